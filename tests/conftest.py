@@ -1,0 +1,31 @@
+"""Helpers of the tests: proofs of claims given as text, enclosures with containment and width."""
+
+from __future__ import annotations
+
+from fractions import Fraction
+from typing import Any
+
+from ultibound.certificate.certificate import Certificate
+from ultibound.claim import parse_claim
+from ultibound.prove import prove
+
+
+def proved(text: str, settings: dict[str, str] | None = None, data: dict[str, str] | None = None) -> Certificate:
+    """The certificate of a claim given as text; `prove` itself has had it checked."""
+    return prove(parse_claim(text, settings or {}, data or {}, "claim.toml"))
+
+
+def ends(quantity: dict[str, str]) -> tuple[Fraction, Fraction]:
+    return Fraction(quantity["lower"]), Fraction(quantity["upper"])
+
+
+def assert_encloses(quantity: dict[str, Any], exact: str | Fraction, max_excess: str | Fraction) -> None:
+    """Contains the exact value (given to within one unit of its last digit), at most `max_excess` wide, relative."""
+    low, high = ends(quantity)
+    value = Fraction(exact)
+    slack = Fraction(0)
+    if isinstance(exact, str) and "." in exact:  # the last digits of a printed value are rounded
+        slack = Fraction(1, 10 ** len(exact.split(".")[1]))
+    assert low <= value + slack, f"lower end {float(low)} above {exact}"
+    assert high >= value - slack, f"upper end {float(high)} below {exact}"
+    assert high - low <= Fraction(max_excess) * abs(value) + 2 * slack, f"width {float(high - low):.3g} at {exact}"

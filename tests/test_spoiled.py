@@ -1,0 +1,298 @@
+"""Certificates spoiled in exactly one place, hashes and digest recomputed, are rejected for the named reason."""
+
+from __future__ import annotations
+
+import copy
+import hashlib
+import json
+import subprocess
+import sys
+import zipapp
+from collections.abc import Callable, Iterator
+from fractions import Fraction
+from pathlib import Path
+from typing import Any
+
+import pytest
+from tests.conftest import proved
+
+from ultibound.checker import check
+from ultibound.checker.document import canonical, digest
+
+EXAMPLES = Path(__file__).parents[1] / "ultibound" / "examples"
+CHECKER = Path(__file__).parents[1] / "ultibound" / "checker"
+BALL = """
+format = 1
+[constants]
+a = "sqrt(2)/2"
+[state]
+v = { range = [-1, 1], unit = "m/s" }
+[uncertain]
+d = [-0.05, 0.05]
+p = { values = [0.1, 0.2] }
+c = { range = [-0.1, 0.1], held = true, change = 0.01 }
+[next]
+v = "c + a*sin(v - c) + d + p/100 + 0.8*(v - c)**3"
+[target]
+v = "c"
+[[require]]
+that = "settles"
+[[require]]
+that = "gain < 0.99"
+[[require]]
+that = "value(v**2 + p)"
+"""
+
+
+def sample(name: str) -> dict[str, Any]:
+    if name == "ball":
+        return proved(BALL.replace("0.8*(v - c)**3", "0.02*(v - c)**3")).entries
+    text = (EXAMPLES / f"{name}.toml").read_text()
+    return proved(text, data={"gaits.csv": (EXAMPLES / "gaits.csv").read_text()} if "gaits.csv" in text else {}).entries
+
+
+@pytest.fixture(scope="module", params=["pendulum", "overstep", "walking", "ball"])
+def entries(request: pytest.FixtureRequest) -> dict[str, Any]:
+    return sample(request.param)
+
+
+@pytest.fixture(scope="module")
+def pyz(tmp_path_factory: pytest.TempPathFactory) -> Path:
+    from ultibound.certificate.standalone import build
+
+    target = tmp_path_factory.mktemp("pyz") / "check_certificate.pyz"
+    build(target)
+    return target
+
+
+def resealed(entries: dict[str, Any]) -> bytes:
+    for item in entries["claim"]["data"]:
+        item["sha256"] = hashlib.sha256(item["text"].encode()).hexdigest()
+    return canonical({**entries, "digest": digest(entries)})
+
+
+def spoiled(entries: dict[str, Any], change: Callable[[dict[str, Any]], None]) -> bytes:
+    changed = copy.deepcopy(entries)
+    change(changed)
+    return resealed(changed)
+
+
+def rejected(data: bytes, reason: str) -> None:
+    verdict = check(data)
+    assert verdict.status == "invalid", verdict
+    assert reason in f"{verdict.place}: {verdict.reason}", verdict
+
+
+def test_the_good_one_is_accepted(entries: dict[str, Any]) -> None:
+    verdict = check(resealed(copy.deepcopy(entries)))
+    assert verdict.status == "valid" and verdict.lines == len(entries["proof"]) and verdict.leaves > 0
+
+
+def quantities(value: Any, path: tuple[Any, ...] = ()) -> Iterator[tuple[tuple[Any, ...], str]]:
+    """Every numeric leaf, with its path."""
+    if isinstance(value, dict):
+        for k, v in value.items():
+            yield from quantities(v, (*path, k))
+    elif isinstance(value, list):
+        for k, v in enumerate(value):
+            yield from quantities(v, (*path, k))
+    elif isinstance(value, str) and path[-1] in ("lower", "upper", "gain", "residual", "bound", "radius"):
+        yield path, value
+
+
+def at(entries: Any, path: tuple[Any, ...]) -> Any:
+    for k in path:
+        entries = entries[k]
+    return entries
+
+
+def moved(text: str, more: int) -> str:
+    q = Fraction(text)
+    return str(q + more * max(abs(q), Fraction(1, 100)) / 50)
+
+
+def test_every_number_that_claims_more_is_rejected(entries: dict[str, Any]) -> None:
+    count = 0
+    for path, text in list(quantities(entries["results"], ("results",))) + list(quantities(entries["proof"], ("proof",))):
+        end, attained = path[-1], "attained" in path
+        shrunk = {"lower": 1, "upper": -1, "gain": -1, "residual": -1, "bound": -1, "radius": 1}[end] * (-1 if attained else 1)
+        change = moved(text, shrunk)
+
+        def spoil(e: dict[str, Any], path: tuple[Any, ...] = path, change: str = change) -> None:
+            at(e, path[:-1])[path[-1]] = change
+
+        verdict = check(spoiled(entries, spoil))
+        assert verdict.status == "invalid", (path, text, change)
+        assert verdict.place in ("results", f"proof line {path[1] + 1}" if path[0] == "proof" else "results") or (
+            path[0] == "proof" and verdict.place.startswith("proof")
+        ), (path, verdict)
+        count += 1
+    assert count > 20
+
+
+def test_every_line_is_needed(entries: dict[str, Any]) -> None:
+    """Without a line, later numbers shift down; what used it has nothing to rest on."""
+    for gone in range(1, len(entries["proof"]) + 1):
+
+        def spoil(e: dict[str, Any], gone: int = gone) -> None:
+            del e["proof"][gone - 1]
+            for line in e["proof"]:
+                line["uses"] = [n - (n > gone) for n in line["uses"] if n != gone]
+
+        assert check(spoiled(entries, spoil)).status == "invalid", gone
+
+
+def test_a_line_retargeted_is_rejected(entries: dict[str, Any]) -> None:
+    names = sorted({line["proves"] for line in entries["proof"]})
+    for number, line in enumerate(entries["proof"]):
+        for name in [n for n in names if n != line["proves"]] + ["slope[v,w]", "require[99]", "require[0]", ""]:
+
+            def spoil(e: dict[str, Any], number: int = number, name: str = name) -> None:
+                e["proof"][number]["proves"] = name
+
+            assert check(spoiled(entries, spoil)).status == "invalid", (number, name)
+
+
+def test_a_rule_or_use_exchanged_is_rejected(entries: dict[str, Any]) -> None:
+    for number, line in enumerate(entries["proof"]):
+        for uses in ([], [number + 1], [0], [True], ["1"], line["uses"] * 2, line["uses"][::-1]):
+            if uses == line["uses"]:
+                continue
+
+            def spoil(e: dict[str, Any], number: int = number, uses: Any = uses) -> None:
+                e["proof"][number]["uses"] = uses
+
+            assert check(spoiled(entries, spoil)).status == "invalid", (number, uses)
+        for rule in ("range", "point", "slope", "ultimate-bound", "squares"):
+            if rule != line["rule"]:
+
+                def spoil_rule(e: dict[str, Any], number: int = number, rule: str = rule) -> None:
+                    e["proof"][number]["rule"] = rule
+
+                rejected(spoiled(entries, spoil_rule), "proof line")
+
+
+def test_a_cut_tree_is_rejected(entries: dict[str, Any]) -> None:
+    for number, line in enumerate(entries["proof"]):
+        if line["rule"] != "range":
+            continue
+        trees = line["witness"]["trees"]
+        cuts: list[Any] = [[], trees[:-1], [*trees, "d"], ["", *trees[1:]], [trees[0] + " d", *trees[1:]], ["9 d d", *trees[1:]],
+                           ["x", *trees[1:]], "d", [trees[0].rpartition(" ")[0], *trees[1:]]]  # fmt: skip
+        for cut in cuts:
+
+            def spoil(e: dict[str, Any], number: int = number, cut: Any = cut) -> None:
+                e["proof"][number]["witness"]["trees"] = cut
+
+            rejected(spoiled(entries, spoil), f"proof line {number + 1}")
+
+
+def test_another_claim_is_rejected(entries: dict[str, Any]) -> None:
+    """A harder claim under the same proof: wider ranges, another gain, other data."""
+    text = entries["claim"]["text"]
+    harder = [(a, b) for a, b in [
+        ("kappa = 0.1 ", "kappa = 0.02 "), ("kappa = 0.09", "kappa = 0.01"), ("kappa = 0.3 ", "kappa = 0.05 "),
+        ("T = { range = [0.36, 0.40]", "T = { range = [0.30, 0.40]"), ("[0.34, 0.44]", "[0.32, 0.46]"),
+        ("d = [-0.05, 0.05]", "d = [-0.09, 0.05]"), ("values = [0.1, 0.2]", "values = [0.1, 0.2, 2]"),
+        ("change = 0.01", "change = 0.05"), ("g = 9.81", "g = 9.5"), ("range = [-0.2, 1.0]", "range = [-0.1, 0.9]"),
+    ] if a in text]  # fmt: skip
+    assert harder
+    for old, new in harder:
+
+        def spoil(e: dict[str, Any], old: str = old, new: str = new) -> None:
+            e["claim"]["text"] = text.replace(old, new)
+
+        assert check(spoiled(entries, spoil)).status == "invalid", (old, new)
+    if entries["claim"]["data"]:
+
+        def data(e: dict[str, Any]) -> None:
+            e["claim"]["data"][0]["text"] = e["claim"]["data"][0]["text"].replace("0.4,0.42,", "0.4,0.42,1")
+
+        assert check(spoiled(entries, data)).status == "invalid"
+    if "kappa" in text:
+
+        def setting(e: dict[str, Any]) -> None:
+            e["claim"]["set"] = {"kappa": "0.02"}
+
+        assert check(spoiled(entries, setting)).status == "invalid"
+
+
+@pytest.mark.parametrize("change, reason", [
+    (lambda e: e.update(proof=[]), "at least one line"),
+    (lambda e: e["results"].update(requirements=[]), "one entry a requirement"),
+    (lambda e: e["results"]["requirements"][0].update(that="gain < 2"), "is claimed"),
+    (lambda e: e["results"].update(route="curve"), "results.route"),
+    (lambda e: e["results"].update(sharp_bound={"lower": "0", "upper": "0"}), "results.sharp_bound"),
+    (lambda e: e["results"]["states"]["v"].update(push={"lower": "1", "upper": "2"}), "results.states.v"),
+    (lambda e: e["results"].update(gain_intervals=[{"gain": "kappa"}]), "results.gain_intervals"),
+    (lambda e: e["results"].update(metric={"kind": "box", "weights": {"v": "2"}}), "results.metric"),
+    (lambda e: e.update(assumptions=["all is well"]), "assumptions"),
+    (lambda e: e["claim"]["data"].append({"name": "x.csv", "sha256": "", "text": ""}), "claim: data"),
+    (lambda e: e["proof"].append(copy.deepcopy(e["proof"][0])), "more than once"),
+    (lambda e: e["proof"][0].update(note="fine"), "proof line 1"),
+])  # fmt: skip
+def test_entries_that_say_more_are_rejected(change: Callable[[dict[str, Any]], None], reason: str) -> None:
+    rejected(spoiled(sample_pendulum(), change), reason)
+
+
+_PENDULUM: list[dict[str, Any]] = []
+
+
+def sample_pendulum() -> dict[str, Any]:
+    if not _PENDULUM:
+        _PENDULUM.append(sample("pendulum"))
+    return _PENDULUM[0]
+
+
+def test_a_verdict_turned_is_rejected() -> None:
+    for name in ("overstep", "pendulum"):
+        entries = sample(name)
+        for k, r in enumerate(entries["results"]["requirements"]):
+            for verdict in {"proved", "refuted"} - {r["verdict"]} | {"PROVED", "", "true"}:
+
+                def spoil(e: dict[str, Any], k: int = k, verdict: str = verdict) -> None:
+                    e["results"]["requirements"][k]["verdict"] = verdict
+
+                rejected(spoiled(entries, spoil), "verdict")
+
+
+def test_a_point_outside_is_rejected(entries: dict[str, Any]) -> None:
+    for number, line in enumerate(entries["proof"]):
+        for name, value in line["witness"].get("at", {}).items():
+            for wrong in ("1000", "#99", "x", value + " "):
+
+                def spoil(e: dict[str, Any], number: int = number, name: str = name, wrong: str = wrong) -> None:
+                    e["proof"][number]["witness"]["at"][name] = wrong
+
+                rejected(spoiled(entries, spoil), f"proof line {number + 1}")
+
+
+def test_the_digest_and_hashes_detect_accidents() -> None:
+    entries = copy.deepcopy(sample_pendulum())
+    entries["digest"] = "0" * 64
+    rejected(canonical(entries), "digest")
+
+
+def run(pyz: Path, data: bytes, folder: Path, *options: str) -> subprocess.CompletedProcess[str]:
+    path = folder / "c.json"
+    path.write_bytes(data)
+    command = [sys.executable, "-I", "-S", str(pyz), str(path), *options]
+    return subprocess.run(command, capture_output=True, text=True, timeout=60, cwd=folder, check=False)
+
+
+def test_the_one_file_checker_agrees(entries: dict[str, Any], pyz: Path, tmp_path: Path) -> None:
+    good = run(pyz, resealed(copy.deepcopy(entries)), tmp_path, "--json")
+    assert good.returncode == 0 and json.loads(good.stdout)["route"] == "slope", good
+    bad = run(pyz, spoiled(entries, lambda e: e["results"]["gain"].update(upper="0.0001")), tmp_path)
+    assert bad.returncode == 1 and "results.gain.upper: more is claimed" in bad.stdout
+    for data in (b"", b"{", b"\xff", b"[]", b"{}", b'{"format":"ultibound-certificate/2"}'):
+        assert run(pyz, data, tmp_path).returncode == 2
+
+
+def test_the_one_file_checker_is_the_folder(pyz: Path) -> None:
+    import zipfile
+
+    with zipfile.ZipFile(pyz) as archive:
+        names = {n for n in archive.namelist() if n.endswith(".py")}
+        assert {f"checker/{p.name}" for p in CHECKER.glob("*.py")} <= names
+    assert zipapp.get_interpreter(pyz) == "/usr/bin/env python3"

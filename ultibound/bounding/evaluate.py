@@ -1,0 +1,108 @@
+"""Programs run over batches of boxes."""
+
+from __future__ import annotations
+
+from collections.abc import Sequence
+from dataclasses import dataclass
+from fractions import Fraction
+from typing import Any
+
+import numpy as np
+
+from ..claim.model import Library
+from ..stepmap.program import Program, Step
+from .intervals import UNARY, Floats, Pair, Table, div, mul, power
+
+
+@dataclass(frozen=True, slots=True)
+class Run:
+    """Ends a box: of the value and of each derivative; `split` where a reading met several cells."""
+
+    low: Floats
+    high: Floats
+    gradient_low: Floats  # (boxes, variables)
+    gradient_high: Floats
+    split: Any
+
+
+class Runner:
+    """A program made ready for numpy: `variables` name the columns of the boxes it is given."""
+
+    def __init__(self, program: Program, variables: Sequence[str], libraries: Sequence[Library]) -> None:
+        self.program, self.variables = program, list(variables)
+        self._tables: dict[tuple[int, str], Table] = {}
+        for step in program.steps:
+            if step.op == "reading":
+                number = int(step.value or 0)
+                self._tables.setdefault((number, step.name), _table(libraries[number], step.name))
+
+    def __call__(self, low: Floats, high: Floats, gradient: bool = True) -> Run:
+        """Runs every step over boxes [low, high] of shape (boxes, variables)."""
+        count, wanted = len(low), [self.program.value, *self.program.checks]
+        if gradient:
+            wanted += self.program.gradient.values()
+        done: list[Pair] = []
+        split = np.zeros(count, bool)
+        with np.errstate(all="ignore"):
+            for step in self.program.steps[: max(wanted) + 1]:
+                done.append(self._step(step, done, low, high, split))
+            defined = np.ones(count, bool)
+            for k in self.program.checks:
+                defined &= np.isfinite(done[k][0]) & np.isfinite(done[k][1])
+        value = _finite(done[self.program.value], count, defined)
+        g_low, g_high = np.zeros_like(low), np.zeros_like(high)
+        if gradient:
+            for column, v in enumerate(self.variables):
+                if v in self.program.gradient:
+                    pair = _finite(done[self.program.gradient[v]], count, defined)
+                    g_low[:, column], g_high[:, column] = pair
+        return Run(*value, g_low, g_high, split)
+
+    def _step(self, step: Step, done: list[Pair], low: Floats, high: Floats, split: Any) -> Pair:
+        args = [done[a] for a in step.args]
+        match step.op:
+            case "variable":
+                k = self.variables.index(step.name)
+                return low[:, k], high[:, k]
+            case "number":
+                x = np.float64(to_float(step.value or Fraction(0)))
+                return x, x
+            case "pi":
+                return np.float64(np.pi), np.float64(np.pi)
+            case "add":
+                return args[0][0] + args[1][0], args[0][1] + args[1][1]
+            case "sub":
+                return args[0][0] - args[1][1], args[0][1] - args[1][0]
+            case "mul":
+                return power(args[0], 2) if step.args[0] == step.args[1] else mul(args[0], args[1])
+            case "div":
+                return div(args[0], args[1])
+            case "power":
+                return power(args[0], int(step.value or 1))
+            case "reading":
+                table = self._tables[int(step.value or 0), step.name]
+                pair, several = table.read(args, step.orders, len(low))
+                split |= several
+                return pair
+            case _:
+                return UNARY[step.op](args[0])
+
+
+def _finite(pair: Pair, count: int, defined: Any) -> Pair:
+    low, high = np.broadcast_to(pair[0], (count,)), np.broadcast_to(pair[1], (count,))
+    bad = np.isnan(low) | np.isnan(high) | ~defined
+    return np.where(bad, -np.inf, low), np.where(bad, np.inf, high)
+
+
+def _table(library: Library, column: str) -> Table:
+    grid = [np.array([float(x) for x in axis]) for axis in library.grid]
+    nodes = np.array([to_float(x) for x in library.columns[column]])
+    return Table(grid, nodes.reshape([len(axis) for axis in library.grid]))
+
+
+def to_float(q: Fraction) -> float:
+    """Nearest float; infinite beyond the range."""
+    try:
+        return float(q)
+    except OverflowError:
+        return float("inf") if q > 0 else float("-inf")

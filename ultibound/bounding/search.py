@@ -1,0 +1,242 @@
+"""Subdivision, worst boxes first and in batches, until ends and attained values are within a gap.
+
+The bounds seen here are floating-point estimates. What leaves this module are witnesses: a splitting tree with the
+form that suffices at each leaf (proofs/forms.md), and the points that come nearest to the ends.
+"""
+
+from __future__ import annotations
+
+import time
+from collections.abc import Callable
+from dataclasses import dataclass
+from fractions import Fraction
+from itertools import product
+from typing import Any
+
+import numpy as np
+
+from ..claim.obligations import Ends, Obligation
+from .evaluate import Runner, to_float
+from .intervals import Floats
+
+BATCH = 4096
+SHARE = 0.6  # of the gap is for the search; the rest is for the checker's own way of evaluating
+DIRECT, CENTRED, MONOTONE = "d", "c", "m"
+Point = dict[str, Fraction]
+
+
+@dataclass(frozen=True, slots=True)
+class Effort:
+    """Limits: relative gap, leaves, and the clock time at which to stop (a guard)."""
+
+    gap: float
+    cells: int
+    until: float
+    watch: Callable[[int, float], None] = lambda leaves, gap: None
+
+
+@dataclass(frozen=True, slots=True)
+class Found:
+    """Witnesses for a range: a tree a top cell, points near the two ends, and what stopped the search."""
+
+    trees: tuple[str, ...]
+    leaves: int
+    upper: float
+    lower: float
+    highest: Point
+    lowest: Point
+    stopped: str  # "" within the gap, else cells | seconds | precision
+
+
+@dataclass
+class _Boxes:
+    """Every box ever made, by number; `split` is the variable bisected, -1 at a leaf, `child` its first half."""
+
+    low: Floats
+    high: Floats
+    split: Any
+    child: Any
+    upper: Floats  # bounds by the best form
+    lower: Floats
+    plain: Floats  # (boxes, 4): direct low, direct high, centred low, centred high
+
+    def grow(self, low: Floats, high: Floats) -> None:
+        n = len(low)
+        self.low, self.high = np.concatenate([self.low, low]), np.concatenate([self.high, high])
+        self.split = np.concatenate([self.split, np.full(n, -1)])
+        self.child = np.concatenate([self.child, np.full(n, -1)])
+        self.upper = np.concatenate([self.upper, np.full(n, np.inf)])
+        self.lower = np.concatenate([self.lower, np.full(n, -np.inf)])
+        self.plain = np.concatenate([self.plain, np.tile([-np.inf, np.inf, -np.inf, np.inf], (n, 1))])
+
+
+@dataclass
+class _Best:
+    """The value that goes furthest to one side, and where: box and choice of end (-1, 0, 1) a variable."""
+
+    sign: int
+    value: float = -np.inf
+    box: int = 0
+    choice: Any = None
+
+    def offer(self, values: Floats, boxes: Any, choices: Any) -> None:
+        k = int(np.argmax(values))
+        if values[k] > self.value or self.choice is None:
+            self.value, self.box, self.choice = float(values[k]), int(boxes[k]), choices[k]
+
+
+def search(runner: Runner, obligation: Obligation, magnitude: bool, effort: Effort) -> Found:
+    """Tree and points for the range of an obligation; with `magnitude` only sup |.| is made tight."""
+    tops = list(product(*(v.cells for v in obligation.variables)))
+    shape = (len(tops), len(obligation.variables))
+    low = np.array([[to_float(c[0]) for c in top] for top in tops]).reshape(shape)
+    high = np.array([[to_float(c[1]) for c in top] for top in tops]).reshape(shape)
+    boxes = _Boxes(*(np.zeros((0, shape[1])) for _ in range(2)), *(np.zeros(0, int) for _ in range(2)),
+                   np.zeros(0), np.zeros(0), np.zeros((0, 4)))  # fmt: skip
+    boxes.grow(low, high)
+    widths = np.maximum(high.max(axis=0, initial=-np.inf) - low.min(axis=0, initial=np.inf), 1e-300)
+    best = (_Best(1), _Best(-1))
+    live, leaves, stopped = np.arange(len(tops)), len(tops), ""
+    while len(live):
+        parts = [_examine(runner, boxes, part, best, bool(obligation.by)) for part in _batches(live)]
+        smear = np.concatenate(parts)
+        ceiling, floor = _allowed(best, magnitude, effort.gap * SHARE)
+        bad = (boxes.upper[live] > ceiling) | (boxes.lower[live] < floor)
+        effort.watch(leaves, float(np.max(boxes.upper[live], initial=0.0)))
+        live, smear = live[bad], smear[bad]
+        if not len(live):
+            break
+        width = boxes.high[live] - boxes.low[live]
+        least = 4e-15 * np.maximum(np.abs(boxes.low[live]), np.abs(boxes.high[live]))
+        smear = np.where(np.isfinite(smear), smear, 1e300 * (width / widths))
+        smear = np.where(width > least, smear, -1.0)
+        smear = np.where((smear.max(axis=1, keepdims=True) <= 0) & (width > least), width / widths, smear)
+        if np.any(smear.max(axis=1, initial=-1.0) <= 0):
+            stopped = "precision"
+            break
+        if leaves + len(live) > effort.cells:
+            stopped = "cells"
+            break
+        if time.monotonic() > effort.until:
+            stopped = "seconds"
+            break
+        live = _bisect(boxes, live, smear.argmax(axis=1))
+        leaves += len(live) // 2
+    return _found(obligation, tops, boxes, best, magnitude, leaves, stopped)
+
+
+def _batches(live: Any) -> list[Any]:
+    return [live[k : k + BATCH] for k in range(0, len(live), BATCH)]
+
+
+def _allowed(best: tuple[_Best, _Best], magnitude: bool, gap: float) -> tuple[float, float]:
+    top, bottom = best[0].value, -best[1].value
+    if magnitude:
+        top = max(abs(top), abs(bottom))
+        bottom = -top
+    return top + max(gap * abs(top), gap * 1e-6), bottom - max(gap * abs(bottom), gap * 1e-6)
+
+
+def _bisect(boxes: _Boxes, live: Any, variable: Any) -> Any:
+    rows = np.arange(len(live))
+    middle = 0.5 * (boxes.low[live, variable] + boxes.high[live, variable])
+    low, high = np.repeat(boxes.low[live], 2, axis=0), np.repeat(boxes.high[live], 2, axis=0)
+    high[2 * rows, variable] = middle
+    low[2 * rows + 1, variable] = middle
+    first = len(boxes.low)
+    boxes.split[live], boxes.child[live] = variable, first + 2 * rows
+    boxes.grow(low, high)
+    return np.arange(first, first + 2 * len(live))
+
+
+def _examine(runner: Runner, boxes: _Boxes, part: Any, best: tuple[_Best, _Best], derivative: bool) -> Floats:
+    """Bounds of a batch by every form; improves the attained values; what splitting by each variable would gain."""
+    low, high = boxes.low[part], boxes.high[part]
+    n = len(part)
+    run = runner(low, high)
+    g_low, g_high = run.gradient_low, run.gradient_high
+    usable = ~run.split if derivative else np.ones(n, bool)  # proofs/forms.md: one cell for derivatives of derivatives
+    rise = (g_low >= 0) & usable[:, None]
+    fall = (g_high <= 0) & usable[:, None] & ~rise
+    up = np.where(rise, 1, np.where(fall, -1, 0))
+    choice = np.concatenate([up, -up])  # upper faces, then lower faces
+    low2, high2 = np.tile(low, (2, 1)), np.tile(high, (2, 1))
+    f_low, f_high = np.where(choice == 1, high2, low2), np.where(choice == -1, low2, high2)
+    face = runner(f_low, f_high)
+    centre = 0.5 * (f_low + f_high)
+    whole = 0.5 * (low + high)
+    points = np.concatenate([centre, whole])
+    at = runner(points, points, gradient=False)
+    radius = 0.5 * (f_high - f_low)
+    reach = _reach(radius, face.gradient_low, face.gradient_high)
+    plain = _reach(0.5 * (high - low), g_low, g_high)
+    ok2 = np.tile(usable, 2) & ~(face.split if derivative else np.zeros(2 * n, bool))
+    reach, plain = np.where(ok2, reach, np.inf), np.where(usable, plain, np.inf)
+    boxes.upper[part] = np.fmin(np.fmin(run.high, face.high[:n]), at.high[:n] + reach[:n])
+    boxes.lower[part] = np.fmax(np.fmax(run.low, face.low[n:]), at.low[n : 2 * n] - reach[n:])
+    boxes.plain[part] = np.stack([run.low, run.high, at.low[2 * n :] - plain, at.high[2 * n :] + plain], axis=1)
+    best[0].offer(_known(at.low[:n]), part, choice[:n])
+    best[1].offer(_known(-at.high[n : 2 * n]), part, choice[n:])
+    span = np.maximum(np.abs(face.gradient_low), np.abs(face.gradient_high)) * radius
+    return np.maximum(span[:n], span[n:])
+
+
+def _reach(radius: Floats, g_low: Floats, g_high: Floats) -> Floats:
+    with np.errstate(invalid="ignore"):
+        each = np.maximum(np.abs(g_low), np.abs(g_high)) * radius
+    total: Floats = np.where(radius > 0, each, 0.0).sum(axis=1)
+    return total
+
+
+def _known(values: Floats) -> Floats:
+    return np.where(np.isfinite(values), values, -np.inf)
+
+
+def _found(
+    obligation: Obligation, tops: list[tuple[Ends, ...]], boxes: _Boxes, best: tuple[_Best, _Best],
+    magnitude: bool, leaves: int, stopped: str,
+) -> Found:  # fmt: skip
+    leaf = boxes.split < 0
+    upper, lower = float(boxes.upper[leaf].max()), float(boxes.lower[leaf].min())
+    if magnitude:
+        upper = max(abs(upper), abs(lower))
+        lower = -upper
+    within = (boxes.plain[:, 0] >= lower) & (boxes.plain[:, 1] <= upper)
+    centred = (boxes.plain[:, 2] >= lower) & (boxes.plain[:, 3] <= upper)
+    form = np.where(within, DIRECT, np.where(centred, CENTRED, MONOTONE))
+    trees = tuple(_written(boxes, k, form) for k in range(len(tops)))
+    points = [_point(obligation, tops, boxes, b) for b in best]
+    return Found(trees, leaves, upper, lower, points[0], points[1], stopped)
+
+
+def _written(boxes: _Boxes, root: int, form: Any) -> str:
+    """Preorder: a number bisects the variable of that rank, a letter is a leaf and its form."""
+    out, stack = [], [root]
+    while stack:
+        k = stack.pop()
+        if boxes.split[k] < 0:
+            out.append(str(form[k]))
+        else:
+            out.append(str(int(boxes.split[k])))
+            stack += [int(boxes.child[k]) + 1, int(boxes.child[k])]
+    return " ".join(out)
+
+
+def _point(obligation: Obligation, tops: list[tuple[Ends, ...]], boxes: _Boxes, best: _Best) -> Point:
+    """The exact point of an attained value: ends or middles of its box, whose ends are exact again."""
+    parent = {int(boxes.child[k]): k for k in np.flatnonzero(boxes.split >= 0)}
+    path, k = [], best.box
+    while k >= len(tops):
+        second = k not in parent
+        up = int(parent[k - 1 if second else k])
+        path.append((int(boxes.split[up]), second))
+        k = up
+    box = [list(c) for c in tops[k]]
+    for variable, second in reversed(path):
+        box[variable][0 if second else 1] = (box[variable][0] + box[variable][1]) / 2
+    ends = {-1: lambda c: c[0], 0: lambda c: (c[0] + c[1]) / 2, 1: lambda c: c[1]}
+    point = {}
+    for v, cell, side in zip(obligation.variables, box, best.choice, strict=True):
+        x = ends[int(side)](cell)
+        point[v.name] = x if v.listed else min(max(x, v.inside[0]), v.inside[1])
+    return point

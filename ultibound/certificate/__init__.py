@@ -1,0 +1,1 @@
+"""Certificates: lines measured by the checker's arithmetic, results, canonical files."""

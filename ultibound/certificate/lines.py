@@ -1,0 +1,127 @@
+"""Proof lines in the making. The numbers on them are the checker's own: only its word counts."""
+
+from __future__ import annotations
+
+from collections.abc import Mapping
+from fractions import Fraction
+from itertools import product
+from typing import Any
+
+from ..checker.derive import Derivation, Domain, Meaning
+from ..checker.numerals import decimal_down, decimal_up
+from ..checker.ranges import Evaluator, walk
+from ..checker.reals import Exact, Scaled
+from ..checker.rules import Line, Proof, place
+from ..checker.statement import read_statement
+from ..claim import Claim
+
+DIGITS = 25
+SHORT = 40
+RATIONAL_CELLS = 64
+RATIONAL_TERMS = 400
+IRRATIONAL = frozenset("pi exp log sin cos tan asin acos atan sinh cosh tanh sqrt".split())
+
+
+class Writer:
+    """Lines of one proof, each with the number it got; domains are those the checker derives."""
+
+    def __init__(self, claim: Claim) -> None:
+        self.derivation = Derivation(read_statement(claim.text, claim.settings, claim.data))
+        self.proof = Proof(self.derivation)
+        self.raw: list[dict[str, Any]] = []
+
+    def domain(self, number: int | None) -> Domain | None:
+        return None if number is None else self.proof.lines[number].domain
+
+    def range(self, proves: str, trees: tuple[str, ...], bits: int, on: int | None) -> tuple[Fraction, Fraction]:
+        """Ends shown by a splitting tree; raises checker.reals.Undefined where a leaf has none."""
+        meaning, evaluator = self._evaluator(proves, bits, on)
+        hull, _ = walk(evaluator, list(product(*(v.cells for v in meaning.variables))), list(trees))
+        low, high = evaluator.a.ends(hull)
+        return low, high
+
+    def point(self, proves: str, at: Mapping[str, str], bits: int, on: int | None) -> tuple[Fraction, Fraction]:
+        meaning, evaluator = self._evaluator(proves, bits, on)
+        jet = evaluator.run(place(meaning, at), False)
+        low, high = evaluator.a.ends(evaluator.wanted(jet))
+        return low, high
+
+    def spelled(self, proves: str, point: Mapping[str, Fraction], on: int | None) -> dict[str, str]:
+        """A point as a witness: rationals, and ranks in finite lists."""
+        at = {}
+        for v in self.derivation.meaning(proves, self.domain(on)).variables:
+            x = point[v.name]
+            rank = next((k for k, c in enumerate(v.cells) if c[0] <= x <= c[1]), 0)
+            at[v.name] = f"#{rank}" if v.listed else str(x)
+        return at
+
+    def rational(self, proves: str, on: int | None) -> bool:
+        """Whether exact rational arithmetic can carry the obligation, and is worth it."""
+        meaning = self.derivation.meaning(proves, self.domain(on))
+        terms = self.derivation.terms
+        below = terms.below(meaning.root)
+        cells = 1
+        for v in meaning.variables:
+            cells *= len(v.cells)
+        return cells <= RATIONAL_CELLS and len(below) <= RATIONAL_TERMS and not any(
+            terms.all[k][0] in IRRATIONAL for k in below
+        )
+
+    def enclosed(
+        self, rule: str, proves: str, witness: dict[str, Any], ends: tuple[Fraction, Fraction], on: int | None
+    ) -> int:
+        """Appends a range or point line whose ends were measured; returns its number."""
+        low, high = _down(ends[0]), _up(ends[1])
+        line = {
+            "rule": rule, "proves": proves, "uses": [] if on is None else [on], "witness": witness,
+            "concludes": {"lower": low[0], "upper": high[0]},
+        }  # fmt: skip
+        meaning = self.derivation.meaning(proves, self.domain(on))
+        self.raw.append(line)
+        number = len(self.raw)
+        self.proof.lines[number] = Line(
+            rule, proves, tuple(line["uses"]), {"lower": low[1], "upper": high[1]}, self.domain(on), meaning.on_set
+        )
+        return number
+
+    def theorem(self, rule: str, proves: str, uses: list[int], concludes: dict[str, str]) -> int:
+        """Appends a theorem's line; raises checker.rules.Rejected where its hypotheses do not hold."""
+        line = {"rule": rule, "proves": proves, "uses": uses, "witness": {}, "concludes": concludes}
+        self.proof.add(line)
+        self.raw.append(line)
+        return len(self.raw)
+
+    def _evaluator(self, proves: str, bits: int, on: int | None) -> tuple[Meaning, Evaluator]:
+        meaning = self.derivation.meaning(proves, self.domain(on))
+        names = [v.name for v in meaning.variables]
+        arithmetic = Scaled(bits) if bits else Exact()
+        libraries = self.derivation.statement.libraries
+        return meaning, Evaluator(self.derivation.terms, meaning.root, meaning.by, names, libraries, arithmetic)
+
+
+def _down(q: Fraction) -> tuple[str, Fraction]:
+    return _short(q) or _read(decimal_down(q, DIGITS))
+
+
+def _up(q: Fraction) -> tuple[str, Fraction]:
+    return _short(q) or _read(decimal_up(q, DIGITS))
+
+
+def upward(q: Fraction) -> str:
+    """A rational no smaller, short to write."""
+    return _up(q)[0]
+
+
+def downward(q: Fraction) -> str:
+    return _down(q)[0]
+
+
+def _short(q: Fraction) -> tuple[str, Fraction] | None:
+    if q.numerator.bit_length() + q.denominator.bit_length() > 4 * SHORT:
+        return None
+    text = str(q)
+    return (text, q) if len(text) <= SHORT else None
+
+
+def _read(text: str) -> tuple[str, Fraction]:
+    return text, Fraction(text)

@@ -1,0 +1,190 @@
+"""What each obligation of proofs/obligations.md means for a claim, derived from the claim's text alone."""
+
+from __future__ import annotations
+
+import re
+from dataclasses import dataclass
+from fractions import Fraction
+from itertools import pairwise
+
+from .grammar import constant
+from .ranges import Ends
+from .statement import Quantity, Range, Requirement, Statement
+from .terms import Names, Terms
+
+
+class Unprovable(Exception):
+    """A well-formed claim, or an obligation, for which this checker has no theorem."""
+
+
+@dataclass(frozen=True)
+class Ranged:
+    """A variable: the cells that cover it, the ends a point must lie between, and whether it is a finite list."""
+
+    name: str
+    cells: tuple[Ends, ...]
+    inside: Ends
+    listed: bool
+
+
+@dataclass(frozen=True)
+class Meaning:
+    root: int
+    by: str
+    variables: list[Ranged]
+    on_set: bool  # whether the state runs through the certified set
+
+
+@dataclass(frozen=True)
+class Domain:
+    """The region, or the ball of `radius` about a target known to lie in `target`."""
+
+    ball: bool
+    radius: Fraction
+    target: Ends
+
+
+class Derivation:
+    """Obligations of a one-state claim in closed form."""
+
+    def __init__(self, statement: Statement) -> None:
+        stance = statement.stances[0]
+        if len(statement.stances) > 1 or stance.name or stance.dynamics is not None or len(stance.states) != 1:
+            raise Unprovable("only closed-form claims of one state and one stance can be checked")
+        if statement.horizon != 1 or statement.shrink or statement.route not in ("best", "slope"):
+            raise Unprovable("only the slope route over one step can be checked")
+        if any(constant(w, statement.values) != (1, 1) for w in statement.weights.values()):
+            raise Unprovable("only the weight 1 can be checked for a single state")
+        self.statement, self.stance, self.terms = statement, stance, Terms()
+        (self.state,) = stance.states
+        self.fixed = not self.terms.variables(self.names().of(f"target({self.state})"))
+
+    def names(self, bound: dict[str, int] | None = None, cut: str = "") -> Names:
+        return Names(self.terms, self.statement, bound or {}, cut)
+
+    def meaning(self, name: str, domain: Domain | None) -> Meaning:
+        """The obligation of that name; the set is needed where the state runs through it."""
+        s = self.state
+        if name == f"target[{s}]":
+            return self.over(self.names().of(f"target({s})"))
+        if name == f"image[{s}]":
+            return self.over(self.names().of(f"next({s})"))
+        if name == f"target-miss[{s}]":
+            target = self.names().of(f"target({s})")
+            step = self.names({s: target}).of(f"next({s})")
+            return self.over(self.terms.put("sub", (step, target)))
+        if name in {f"target-slope[{s},{h}]": h for h in self.moving()}:
+            held = name.removeprefix(f"target-slope[{s},").removesuffix("]")
+            given = {h: (self.occurs(self.statement.uncertain[h]),) * 2 for h in self.moving()}
+            return self.over(self.names(cut=held).of(f"target({s})"), held, given)
+        if domain is None:
+            raise Unprovable(f"{name} needs a line that gives its set")
+        if name == f"slope[{s},{s}]":
+            bound, given = self.through(domain, {})
+            return self.over(self.names(bound, s).of(f"next({s})"), s, given, True)
+        number = re.fullmatch(r"require\[([1-9][0-9]{0,3})\]", name)
+        if number and int(number[1]) <= len(self.statement.requirements):
+            return self.required(self.statement.requirements[int(number[1]) - 1], domain)
+        raise Unprovable(f"{name} is no obligation of this claim")
+
+    def required(self, r: Requirement, domain: Domain) -> Meaning:
+        if r.kind not in ("value", "sensitivity") or r.stance is not None:
+            raise Unprovable(f"{r.text!r} is not proved by a range")
+        bound, given = self.through(domain, r.over)
+        names = self.names(bound, r.by or "")
+        root = names.expression(r.expression) if r.expression is not None else names.of(f"next({r.state})")
+        met = self.terms.variables(root)
+        on_set = self.state not in r.over and (self.state in met or f"error({self.state})" in met)
+        return self.over(root, r.by or "", given, on_set)
+
+    def moving(self) -> list[str]:
+        """Held quantities that may change from step to step and that the target depends on."""
+        met = self.terms.variables(self.names().of(f"target({self.state})"))
+        return [h for h in met if self.statement.uncertain[h].change is not None]
+
+    def through(self, domain: Domain, over: dict[str, Range]) -> tuple[dict[str, int], dict[str, tuple[Ends, Ends]]]:
+        """Replacements and ranges: what `over` says, and the state through the set."""
+        bound: dict[str, int] = {}
+        given: dict[str, tuple[Ends, Ends]] = {}
+        for name, r in over.items():
+            bound[name] = self.terms.put("variable", (), name)
+            given[name] = self.ends(r)
+        if domain.ball and self.state not in over:
+            (low, high), r_ = domain.target, domain.radius
+            if self.fixed:
+                given[self.state] = (low - r_, high + r_), (high - r_, low + r_)
+            else:  # the ball moves with its centre: proofs/invariant-set.md
+                error = f"error({self.state})"
+                given[error] = (-r_, r_), (-r_, r_)
+                centre = self.names(bound).of(f"target({self.state})")
+                bound[self.state] = self.terms.put("add", (centre, self.terms.put("variable", (), error)))
+        return bound, given
+
+    def over(
+        self, root: int, by: str = "", given: dict[str, tuple[Ends, Ends]] | None = None, on_set: bool = False
+    ) -> Meaning:
+        variables = []
+        for name in self.terms.variables(root):
+            if given and name in given:
+                outer, inner = given[name]
+            else:
+                quantity = self.stance.states.get(name) or self.statement.uncertain[name]
+                if quantity.values is not None:
+                    cells = tuple(constant(e, self.statement.values) for e in quantity.values)
+                    variables.append(Ranged(name, cells, cells[0], True))
+                    continue
+                outer, inner = self.range(quantity)
+            cuts = [outer[0], *sorted(x for x in self.lines(name, root) if outer[0] < x < outer[1]), outer[1]]
+            variables.append(Ranged(name, tuple(pairwise(cuts)), inner, False))
+        return Meaning(root, by, variables, on_set)
+
+    def lines(self, name: str, root: int) -> set[Fraction]:
+        """Grid lines of the axes that read a variable directly: its range is cut there."""
+        found: set[Fraction] = set()
+        columns = {c: library for library in self.statement.libraries for c in library.columns}
+        for k in self.terms.below(root):
+            op, args, payload = self.terms.all[k]
+            for grid, a in zip(columns[str(payload)].grid, args, strict=True) if op == "reading" else ():
+                while self.terms.all[a][0] == "mark":
+                    a = self.terms.all[a][1][0]
+                if self.terms.all[a] == ("variable", (), name):
+                    found.update(grid)
+        return found
+
+    def ends(self, r: Range) -> tuple[Ends, Ends]:
+        """Ends that surely contain a range, and ends surely inside it."""
+        low, high = (constant(e, self.statement.values) for e in (r.lower, r.upper))
+        return (low[0], high[1]), (low[1], high[0])
+
+    def range(self, quantity: Quantity) -> tuple[Ends, Ends]:
+        if quantity.range is None:
+            raise Unprovable(f"{quantity.name} has no range")
+        return self.ends(quantity.range)
+
+    def region(self) -> tuple[Ends, Ends]:
+        return self.range(self.stance.states[self.state])
+
+    def occurs(self, quantity: Quantity) -> Ends:
+        if quantity.values is None:
+            return self.range(quantity)[0]
+        cells = [constant(e, self.statement.values) for e in quantity.values]
+        return min(c[0] for c in cells), max(c[1] for c in cells)
+
+    def change(self, held: str) -> Ends:
+        """How far a held quantity may move in one step, at most the width of its range."""
+        quantity = self.statement.uncertain[held]
+        low, high = self.occurs(quantity)
+        moved = constant(quantity.change, self.statement.values) if quantity.change is not None else (high - low,) * 2
+        return min(moved[0], high - low), min(moved[1], high - low)
+
+    def leaves_out(self, r: Requirement) -> bool:
+        """Whether `over` may leave out values that occur (always said of a defined name: it is set free)."""
+        for name, given in r.over.items():
+            quantity = self.stance.states.get(name) or self.statement.uncertain.get(name)
+            if quantity is None and name not in self.statement.values:
+                return True
+            low, high = self.occurs(quantity) if quantity is not None else self.statement.values[name]
+            outer = self.ends(given)[1]
+            if low < outer[0] or high > outer[1]:
+                return True
+        return False

@@ -1,0 +1,367 @@
+"""Enclosures over boxes: forward differentiation in outward-rounded arithmetic, forms, splitting trees.
+
+proofs/forms.md, proofs/reading.md, proofs/splitting.md.
+"""
+
+from __future__ import annotations
+
+from collections.abc import Sequence
+from fractions import Fraction
+from itertools import product
+from typing import Any
+
+from .library import Library
+from .numerals import decimal_down, decimal_up
+from .reals import Exact, Scaled, Undefined
+from .terms import Terms
+
+Ends = tuple[Fraction, Fraction]
+Box = list[Ends]
+Interval = Any  # a pair of whole numbers (Scaled) or of fractions (Exact)
+SMOOTH = frozenset("sqrt exp log sin cos tan asin acos atan sinh cosh tanh".split())
+
+
+class Jet:
+    """v: value; d: derivative by the marked name; g[i], dg[i]: derivatives of both by variable i. None, absent: 0."""
+
+    __slots__ = ("d", "dg", "g", "v")
+
+    def __init__(self, v: Interval, d: Interval = None) -> None:
+        self.v, self.d = v, d
+        self.g: dict[int, Interval] = {}
+        self.dg: dict[int, Interval] = {}
+
+
+class Evaluator:
+    """A term, or its derivative by a marked name, over boxes of named variables."""
+
+    def __init__(
+        self, terms: Terms, root: int, by: str, names: list[str], libraries: Sequence[Library], arithmetic: Scaled | Exact
+    ) -> None:
+        self.all, self.root, self.by, self.names, self.a = terms.all, root, by, names, arithmetic
+        self.columns = {c: library for library in libraries for c in library.columns}
+        self.zero, self.one = arithmetic.number(Fraction(0)), arithmetic.number(Fraction(1))
+        self.nodes: dict[tuple[str, int], Interval] = {}
+        self.fixed: dict[int, Jet] = {}
+        self.moving: list[int] = []
+        self.several = False
+        for k in terms.below(root):
+            op, args, _ = self.all[k]
+            if op == "variable" or op == "mark" or any(a not in self.fixed for a in args):
+                self.moving.append(k)
+            else:
+                self.fixed[k] = self.term(k, self.fixed, [], False)
+
+    def run(self, box: Box, gradient: bool) -> Jet:
+        """The root's jet over a box; `several` tells whether a reading met more than one cell."""
+        self.several = False
+        jets = dict(self.fixed)
+        for k in self.moving:
+            jets[k] = self.term(k, jets, box, gradient)
+        return jets[self.root]
+
+    def wanted(self, jet: Jet) -> Interval:
+        return (jet.d or self.zero) if self.by else jet.v
+
+    def slopes(self, jet: Jet) -> dict[int, Interval]:
+        return jet.dg if self.by else jet.g
+
+    def term(self, k: int, jets: dict[int, Jet], box: Box, gradient: bool) -> Jet:
+        op, args, payload = self.all[k]
+        a = self.a
+        if op == "number" and isinstance(payload, Fraction):
+            return Jet(a.number(payload))
+        if op == "pi":
+            return Jet(a.pi())
+        if op == "variable":
+            i = self.names.index(str(payload))
+            jet = Jet(a.between(*box[i]))
+            if gradient:
+                jet.g[i] = self.one
+            return jet
+        first = jets[args[0]]
+        if op == "mark":
+            jet = Jet(first.v, self.one if payload == self.by else first.d)
+            jet.g = first.g
+            if payload != self.by:
+                jet.dg = first.dg
+            return jet
+        if op == "neg":
+            return self.linear(a.neg(first.v), first, None)
+        if op == "add" or op == "sub":
+            second = jets[args[1]]
+            return self.linear(a.add(first.v, second.v) if op == "add" else a.sub(first.v, second.v), first, second, op)
+        if op == "mul" and args[0] != args[1]:
+            return self.times(first, jets[args[1]])
+        if op == "mul":
+            return self.chain(first, "power", 2)
+        if op == "div":
+            return self.over(first, jets[args[1]])
+        if op == "power" and isinstance(payload, Fraction):
+            return self.chain(first, "power", int(payload))
+        if op == "reading":
+            return self.reading(str(payload), args, [jets[x] for x in args], box)
+        if op in SMOOTH:
+            return self.chain(first, op, 0)
+        raise Undefined(f"{op} has no rule here")
+
+    def plus(self, *parts: Interval) -> Interval:
+        total = None
+        for p in parts:
+            if p is not None:
+                total = p if total is None else self.a.add(total, p)
+        return total
+
+    def prod(self, *factors: Interval) -> Interval:
+        """Product, None standing for zero."""
+        total = factors[0]
+        for f in factors[1:]:
+            if total is None or f is None:
+                return None
+            total = self.a.mul(total, f)
+        return total
+
+    def linear(self, v: Interval, x: Jet, y: Jet | None, op: str = "neg") -> Jet:
+        a = self.a
+
+        def both(p: Interval, q: Interval) -> Interval:
+            if op == "neg":
+                return None if p is None else a.neg(p)
+            q = None if q is None else a.neg(q) if op == "sub" else q
+            return self.plus(p, q)
+
+        jet = Jet(v, both(x.d, y.d if y else None))
+        for mine, of_x, of_y in ((jet.g, x.g, y.g if y else {}), (jet.dg, x.dg, y.dg if y else {})):
+            for i in of_x | of_y:
+                mine[i] = both(of_x.get(i), of_y.get(i))
+        return jet
+
+    def times(self, x: Jet, y: Jet) -> Jet:
+        plus, prod = self.plus, self.prod
+        jet = Jet(self.a.mul(x.v, y.v), plus(prod(x.d, y.v), prod(x.v, y.d)))
+        for i in x.g | y.g:
+            jet.g[i] = plus(prod(x.g.get(i), y.v), prod(x.v, y.g.get(i)))
+        for i in x.g | y.g if self.by else ():
+            second = plus(
+                prod(x.dg.get(i), y.v), prod(x.d, y.g.get(i)), prod(x.g.get(i), y.d), prod(x.v, y.dg.get(i))
+            )
+            if second is not None:
+                jet.dg[i] = second
+        return jet
+
+    def over(self, x: Jet, y: Jet) -> Jet:
+        """q = x/y from q y = x, differentiated."""
+        plus, prod, div = self.plus, self.prod, self.a.div
+        q = div(x.v, y.v)
+
+        def part(numerator: Interval, *taken: Interval) -> Interval:
+            less = plus(*taken)
+            top = plus(numerator, None if less is None else self.a.neg(less))
+            return None if top is None else div(top, y.v)
+
+        jet = Jet(q, part(x.d, prod(q, y.d)))
+        for i in x.g | y.g:
+            jet.g[i] = part(x.g.get(i), prod(q, y.g.get(i)))
+            if self.by:
+                second = part(
+                    x.dg.get(i), prod(jet.g[i], y.d), prod(q, y.dg.get(i)), prod(jet.d, y.g.get(i))
+                )
+                if second is not None:
+                    jet.dg[i] = second
+        return jet
+
+    def chain(self, x: Jet, op: str, n: int) -> Jet:
+        v, first, second = self.derivatives(op, n, x.v, bool(x.g) or x.d is not None, x.d is not None and bool(x.g))
+        jet = Jet(v, self.prod(first, x.d))
+        for i, slope in x.g.items():
+            jet.g[i] = self.prod(first, slope)
+            twice = self.plus(self.prod(second, x.d, slope), self.prod(first, x.dg.get(i)))
+            if self.by and twice is not None:
+                jet.dg[i] = twice
+        return jet
+
+    def derivatives(self, op: str, n: int, u: Interval, one: bool, two: bool) -> tuple[Interval, Interval, Interval]:
+        """Value, first and second derivative of an elementary function over an interval, as far as asked for."""
+        a = self.a
+        if op == "power":
+            v = a.power(u, n)
+            first = a.mul(a.number(Fraction(n)), a.power(u, n - 1)) if one and n > 1 else self.one
+            if not two or n < 2:
+                return v, first, None
+            return v, first, a.mul(a.number(Fraction(n * (n - 1))), a.power(u, n - 2) if n > 2 else self.one)
+        v = getattr(a, op)(u)
+        if not one:
+            return v, None, None
+        if op == "exp":
+            return v, v, v
+        if op == "sin":
+            return v, a.cos(u), a.neg(v)
+        if op == "cos":
+            return v, a.neg(a.sin(u)), a.neg(v)
+        if op == "sinh":
+            return v, a.cosh(u), v
+        if op == "cosh":
+            return v, a.sinh(u), v
+        two_ = a.number(Fraction(2))
+        if op == "sqrt":
+            first = a.div(self.one, a.mul(two_, v))
+            return v, first, a.neg(a.div(first, a.mul(two_, u))) if two else None
+        if op == "log":
+            first = a.div(self.one, u)
+            return v, first, a.neg(a.power(first, 2)) if two else None
+        if op == "tan":
+            first = a.add(self.one, a.power(v, 2))
+            return v, first, a.mul(two_, a.mul(v, first)) if two else None
+        if op == "tanh":
+            first = a.sub(self.one, a.power(v, 2))
+            return v, first, a.neg(a.mul(two_, a.mul(v, first))) if two else None
+        if op == "atan":
+            first = a.div(self.one, a.add(self.one, a.power(u, 2)))
+            return v, first, a.neg(a.mul(two_, a.mul(u, a.power(first, 2)))) if two else None
+        first = a.div(self.one, a.sqrt(a.sub(self.one, a.power(u, 2))))  # asin, and acos = pi/2 - asin
+        later = a.mul(u, a.power(first, 3)) if two else None
+        if op == "asin":
+            return v, first, later
+        return v, a.neg(first), None if later is None else a.neg(later)
+
+    def reading(self, column: str, args: tuple[int, ...], axes: list[Jet], box: Box) -> Jet:
+        """A multilinear reading and its derivatives, by the chain rule over its axes (proofs/reading.md)."""
+        library = self.columns[column]
+        ends = [self.exact(x, jet, box) for x, jet in zip(args, axes, strict=True)]
+        cells = [met(grid, *e) for grid, e in zip(library.grid, ends, strict=True)]
+        several = any(len(c) > 1 for c in cells)
+        self.several |= several
+
+        def partial(*by: int) -> Interval:
+            orders = [int(j in by) for j in range(len(axes))]
+            parts = [self.cell(library, column, cell, ends, orders) for cell in product(*cells)]
+            return min(p[0] for p in parts), max(p[1] for p in parts)
+
+        jet = Jet(partial())
+        active = [j for j, x in enumerate(axes) if x.g or x.d is not None]
+        slope = {j: partial(j) for j in active}
+        jet.d = self.plus(*(self.prod(slope[j], axes[j].d) for j in active))
+        for i in {i for x in axes for i in x.g}:
+            jet.g[i] = self.plus(*(self.prod(slope[j], axes[j].g.get(i)) for j in active))
+            if self.by and not several:
+                parts = [self.prod(slope[j], axes[j].dg.get(i)) for j in active]
+                for j, m in product(active, active):
+                    if j != m and axes[j].d is not None and i in axes[m].g:
+                        parts.append(self.prod(partial(j, m), axes[j].d, axes[m].g[i]))
+                second = self.plus(*parts)
+                if second is not None:
+                    jet.dg[i] = second
+        return jet
+
+    def exact(self, k: int, jet: Jet, box: Box) -> Ends:
+        """Ends of an axis value: exact where a variable is read directly, so that cells keep their faces."""
+        while self.all[k][0] == "mark":
+            k = self.all[k][1][0]
+        if self.all[k][0] == "variable":
+            return box[self.names.index(str(self.all[k][2]))]
+        return self.a.ends(jet.v)
+
+    def cell(self, library: Library, column: str, cell: tuple[int, ...], ends: list[Ends], orders: list[int]) -> Interval:
+        """Hull of a reading, or of its derivatives, over the part of one cell that is met: at its vertices."""
+        a, grid = self.a, library.grid
+        corners = []
+        for bits in product((0, 1), repeat=len(cell)):
+            flat = 0
+            for axis, i, b in zip(grid, cell, bits, strict=True):
+                flat = flat * len(axis) + i + b
+            if (column, flat) not in self.nodes:
+                self.nodes[column, flat] = a.number(library.columns[column][flat])
+            corners.append(self.nodes[column, flat])
+        for axis in range(len(cell)):
+            low, width = grid[axis][cell[axis]], grid[axis][cell[axis] + 1] - grid[axis][cell[axis]]
+            half = len(corners) // 2  # the axis to be folded varies slowest; its values go to the fast end
+            pairs = list(zip(corners[:half], corners[half:], strict=True))
+            if orders[axis]:
+                corners = [a.div(a.sub(q, p), a.number(width)) for p, q in pairs]
+                continue
+            inner = [min(max((e - low) / width, Fraction(0)), Fraction(1)) for e in ends[axis]]
+            shares = [a.number(t) for t in dict.fromkeys(inner)]
+            corners = [a.add(p, a.mul(t, a.sub(q, p))) for p, q in pairs for t in shares]
+        return min(c[0] for c in corners), max(c[1] for c in corners)
+
+
+def met(grid: tuple[Fraction, ...], low: Fraction, high: Fraction) -> range:
+    """Ranks of the cells that [low, high] needs: those with g_i < high and g_{i+1} > low (proofs/reading.md)."""
+    if low < grid[0] or high > grid[-1]:
+        span = f"[{decimal_down(low, 6)}, {decimal_up(high, 6)}]"
+        raise Undefined(f"a library axis is read over {span}, beyond its grid")
+    first = max((i for i in range(len(grid) - 1) if grid[i] <= low), default=0)
+    last = max((i for i in range(len(grid) - 1) if grid[i] < high), default=first)
+    return range(min(first, len(grid) - 2), max(first, last) + 1)
+
+
+def enclose(evaluator: Evaluator, box: Box, form: str) -> Interval:
+    """Range over a box by one form: d direct, c centred, m monotone (proofs/forms.md)."""
+    jet = evaluator.run(box, form != "d")
+    low, high = evaluator.wanted(jet)
+    if form == "d":
+        return low, high
+    if evaluator.by and evaluator.several:
+        raise Undefined("a centred or monotone form of a derivative needs every reading within one cell")
+    slopes = evaluator.slopes(jet)
+    if form == "c":
+        c_low, c_high = centred(evaluator, box, slopes)
+        return max(low, c_low), min(high, c_high)
+    if form != "m":
+        raise Undefined(f"unknown form {form!r}")
+    return max(low, face(evaluator, box, slopes, -1)[0]), min(high, face(evaluator, box, slopes, 1)[1])
+
+
+def centred(evaluator: Evaluator, box: Box, slopes: dict[int, Interval]) -> Interval:
+    """f(c) + sum of slope times distance from the centre."""
+    a = evaluator.a
+    centre = [((x + y) / 2,) * 2 for x, y in box]
+    total = evaluator.wanted(evaluator.run(centre, False))
+    for i, slope in slopes.items():
+        radius = (box[i][1] - box[i][0]) / 2
+        total = a.add(total, a.mul(slope, a.between(-radius, radius)))
+    return total
+
+
+def face(evaluator: Evaluator, box: Box, slopes: dict[int, Interval], side: int) -> Interval:
+    """Range over the face on which the upper (side 1) or lower (-1) end is taken, sound for that end alone."""
+    reduced = list(box)
+    for i, (low, high) in enumerate(box):
+        slope = slopes.get(i)
+        if slope is None or slope[0] >= 0:
+            reduced[i] = (high, high) if side > 0 else (low, low)
+        elif slope[1] <= 0:
+            reduced[i] = (low, low) if side > 0 else (high, high)
+    jet = evaluator.run(reduced, True)
+    low, high = evaluator.wanted(jet)
+    if all(x == y for x, y in reduced) or (evaluator.by and evaluator.several):
+        return low, high
+    c_low, c_high = centred(evaluator, reduced, evaluator.slopes(jet))
+    return max(low, c_low), min(high, c_high)
+
+
+def walk(evaluator: Evaluator, tops: list[tuple[Ends, ...]], trees: list[str]) -> tuple[Interval, int]:
+    """Hull over the leaves of one splitting tree a top cell, and the number of leaves (proofs/splitting.md)."""
+    if len(trees) != len(tops) or not tops:
+        raise Undefined(f"{len(trees)} trees for {len(tops)} cells")
+    hull: Interval = None
+    leaves = 0
+    for top, tree in zip(tops, trees, strict=True):
+        waiting = [list(top)]
+        for token in tree.split(" "):
+            if not waiting:
+                raise Undefined("a tree goes on after its last leaf")
+            box = waiting.pop()
+            if token.isascii() and token.isdigit() and len(token) < 4 and int(token) < len(box):
+                low, high = box[int(token)]
+                halves = [list(box), list(box)]
+                halves[0][int(token)] = low, (low + high) / 2
+                halves[1][int(token)] = (low + high) / 2, high
+                waiting += [halves[1], halves[0]]
+                continue
+            part = enclose(evaluator, box, token)
+            hull = part if hull is None else (min(hull[0], part[0]), max(hull[1], part[1]))
+            leaves += 1
+        if waiting:
+            raise Undefined("a tree ends before all of its box is covered")
+    return hull, leaves

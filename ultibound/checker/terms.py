@@ -1,0 +1,149 @@
+"""The claim's expressions with names resolved: a flat list of terms, each different one once."""
+
+from __future__ import annotations
+
+from fractions import Fraction
+from math import isqrt
+
+from .grammar import Expression
+from .statement import Stance, Statement
+
+FOLDED_BITS = 2**17
+Term = tuple[str, tuple[int, ...], Fraction | str | None]
+
+
+class Terms:
+    """Terms (op, arguments, payload); arguments are ranks of earlier terms, rationals are folded exactly."""
+
+    def __init__(self) -> None:
+        self.all: list[Term] = []
+        self.rank: dict[Term, int] = {}
+
+    def put(self, op: str, args: tuple[int, ...] = (), payload: Fraction | str | None = None) -> int:
+        if args and all(self.all[a][0] == "number" for a in args):
+            folded = fold(op, [q for a in args if isinstance(q := self.all[a][2], Fraction)])
+            if folded is not None:
+                op, args, payload = "number", (), folded
+        term = (op, args, payload)
+        if term not in self.rank:
+            self.rank[term] = len(self.all)
+            self.all.append(term)
+        return self.rank[term]
+
+    def raised(self, base: int, p: Fraction) -> int:
+        """Integer and half-integer powers by roots, repeated products and reciprocals."""
+        if p.denominator == 2:
+            return self.raised(self.put("sqrt", (base,)), 2 * p)
+        if p < 0:
+            return self.put("div", (self.put("number", (), Fraction(1)), self.raised(base, -p)))
+        if p == 0:
+            return self.put("number", (), Fraction(1))
+        known = self.all[base][2]
+        if self.all[base][0] == "number" and isinstance(known, Fraction) and size(known) * p <= FOLDED_BITS:
+            return self.put("number", (), known ** int(p))
+        return base if p == 1 else self.put("power", (base,), p)
+
+    def below(self, root: int) -> list[int]:
+        """Every term the root is built from, in order, the root last."""
+        marked = {root}
+        for k in range(root, -1, -1):
+            if k in marked:
+                marked.update(self.all[k][1])
+        return sorted(marked)
+
+    def variables(self, root: int) -> list[str]:
+        return sorted({str(self.all[k][2]) for k in self.below(root) if self.all[k][0] == "variable"})
+
+
+def size(q: Fraction) -> int:
+    return max(q.numerator.bit_length(), q.denominator.bit_length())
+
+
+def fold(op: str, operands: list[Fraction]) -> Fraction | None:
+    a, b = operands[0], operands[-1]
+    if size(a) + size(b) > FOLDED_BITS:
+        return None
+    if op == "add":
+        return a + b
+    if op == "sub":
+        return a - b
+    if op == "mul":
+        return a * b
+    if op == "neg":
+        return -a
+    if op == "div" and b != 0:
+        return a / b
+    if op == "sqrt" and a >= 0:
+        p, q = isqrt(a.numerator), isqrt(a.denominator)
+        return Fraction(p, q) if p * p == a.numerator and q * q == a.denominator else None
+    return None
+
+
+class Names:
+    """Meaning of names as ranks of terms. `bound` replaces names; `cut` is the name a derivative is taken by,
+    whose term is wrapped in a `mark` at which the derivative stops (proofs/forms.md)."""
+
+    def __init__(self, terms: Terms, statement: Statement, bound: dict[str, int], cut: str) -> None:
+        stance: Stance = statement.stances[0]
+        self.terms, self.statement, self.cut, self.rank = terms, statement, cut, dict(bound)
+        if cut in bound:
+            self.rank[cut] = terms.put("mark", (bound[cut],), cut)
+        self.text: dict[str, Expression] = {**statement.constants, **statement.gains, **stance.define}
+        for s in stance.states:
+            self.text[f"target({s})"], self.text[f"next({s})"] = stance.target[s], stance.next[s]
+        self.library = {c: k for k, library in enumerate(statement.libraries) for c in library.columns}
+
+    def of(self, name: str) -> int:
+        waiting = [name]
+        while waiting:
+            name = waiting[-1]
+            missing = [n for e in self.sources(name) for n in mentioned(e) if n not in self.rank]
+            if name not in self.rank and missing:
+                waiting += missing
+                continue
+            if name not in self.rank:
+                rank = self.term(name)
+                self.rank[name] = self.terms.put("mark", (rank,), name) if name == self.cut else rank
+            waiting.pop()
+        return self.rank[name]
+
+    def sources(self, name: str) -> tuple[Expression, ...]:
+        if name in self.text:
+            return (self.text[name],)
+        return self.statement.libraries[self.library[name]].at if name in self.library else ()
+
+    def term(self, name: str) -> int:
+        if name in self.text:
+            return self.expression(self.text[name])
+        if name in self.library:
+            axes = tuple(self.expression(e) for e in self.sources(name))
+            return self.terms.put("reading", axes, name)
+        return self.terms.put("variable", (), name)
+
+    def expression(self, e: Expression) -> int:
+        put, ranks = self.terms.put, list[int]()
+        for node in e.nodes:
+            args = tuple(ranks[a] for a in node.args)
+            if node.op in ("name", "target", "next"):
+                ranks.append(self.of(called(node.op, node.name)))
+            elif node.op == "power" and node.value is not None:
+                ranks.append(self.terms.raised(args[0], node.value))
+            elif node.op == "bezier":
+                points = args[1:]
+                while len(points) > 1:  # de Casteljau
+                    points = tuple(
+                        put("add", (a, put("mul", (args[0], put("sub", (b, a))))))
+                        for a, b in zip(points, points[1:], strict=False)
+                    )
+                ranks.append(points[0])
+            else:
+                ranks.append(put(node.op, args, node.value))
+        return ranks[-1]
+
+
+def called(op: str, name: str | None) -> str:
+    return str(name) if op == "name" else f"{op}({name})"
+
+
+def mentioned(e: Expression) -> list[str]:
+    return [called(n.op, n.name) for n in e.nodes if n.op in ("name", "target", "next")]

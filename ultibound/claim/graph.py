@@ -1,0 +1,182 @@
+"""Expressions of a claim with every name resolved: one flat, shared graph of gates."""
+
+from __future__ import annotations
+
+from collections.abc import Mapping
+from dataclasses import dataclass
+from fractions import Fraction
+from math import isqrt
+
+from .expression import Expression
+from .model import Claim, Stance
+
+CORNERS = frozenset({"abs", "min", "max", "clip"})
+FOLDED_BITS = 2**17
+
+
+@dataclass(frozen=True, slots=True)
+class Gate:
+    """One operation; `args` are numbers of earlier gates."""
+
+    op: str
+    args: tuple[int, ...] = ()
+    value: Fraction | None = None
+    name: str = ""
+
+
+class Graph:
+    """Gates in order of definition, each different one once; rational operands are folded exactly."""
+
+    def __init__(self) -> None:
+        self.gates: list[Gate] = []
+        self._number: dict[Gate, int] = {}
+
+    def add(self, op: str, *args: int, value: Fraction | None = None, name: str = "") -> int:
+        gate = self._folded(op, args) or Gate(op, args, value, name)
+        number = self._number.get(gate)
+        if number is None:
+            number = self._number[gate] = len(self.gates)
+            self.gates.append(gate)
+        return number
+
+    def number(self, value: Fraction | int) -> int:
+        return self.add("number", value=Fraction(value))
+
+    def power(self, base: int, exponent: Fraction) -> int:
+        """base**exponent for integers and half-integers, by roots, products and reciprocals."""
+        if exponent.denominator == 2:
+            return self.power(self.add("sqrt", base), exponent * 2)
+        if exponent < 0:
+            return self.add("div", self.number(1), self.power(base, -exponent))
+        if exponent == 0:
+            return self.number(1)
+        known = self.gates[base].value if self.gates[base].op == "number" else None
+        if known is not None and _bits(known) * exponent <= FOLDED_BITS:
+            return self.number(known ** int(exponent))
+        return base if exponent == 1 else self.add("power", base, value=exponent)
+
+    def _folded(self, op: str, args: tuple[int, ...]) -> Gate | None:
+        operands = [self.gates[a].value for a in args if self.gates[a].op == "number"]
+        if not args or len(operands) < len(args) or None in operands:
+            return None
+        a, b = operands[0] or Fraction(0), operands[-1] or Fraction(0)
+        if _bits(a) + _bits(b) > FOLDED_BITS:
+            return None
+        if op in ("add", "sub", "mul", "neg"):
+            return Gate("number", value={"add": a + b, "sub": a - b, "mul": a * b, "neg": -a}[op])
+        if op == "div" and b:
+            return Gate("number", value=a / b)
+        if op == "sqrt" and a >= 0:
+            top, low = isqrt(a.numerator), isqrt(a.denominator)
+            if top * top == a.numerator and low * low == a.denominator:
+                return Gate("number", value=Fraction(top, low))
+        return None
+
+    def reached(self, roots: tuple[int, ...]) -> list[int]:
+        """Gates the roots are built from, in order."""
+        seen: set[int] = set()
+        stack = list(roots)
+        while stack:
+            k = stack.pop()
+            if k not in seen:
+                seen.add(k)
+                stack.extend(self.gates[k].args)
+        return sorted(seen)
+
+    def variables(self, root: int) -> list[str]:
+        """Names of the variables a gate depends on, sorted."""
+        return sorted({self.gates[k].name for k in self.reached((root,)) if self.gates[k].op == "variable"})
+
+
+def _bits(q: Fraction) -> int:
+    return max(q.numerator.bit_length(), q.denominator.bit_length())
+
+
+class Scope:
+    """What names mean while expressions become gates.
+
+    `bound` replaces names by gates (a state by its target, a gain by a free variable); `cut` is the name a
+    sensitivity is taken by: it is marked, so that the derivative stops there (proofs/forms.md, mark).
+    """
+
+    def __init__(
+        self, graph: Graph, claim: Claim, stance: Stance, bound: Mapping[str, int] | None = None, cut: str = ""
+    ) -> None:
+        self.graph, self.claim, self.stance, self.cut = graph, claim, stance, cut
+        self._known: dict[str, int] = dict(bound or {})
+        if cut in self._known:
+            self._known[cut] = graph.add("mark", self._known[cut], name=cut)
+        self._texts: dict[str, Expression] = {**claim.constants, **claim.gains, **stance.define}
+        self._texts |= {f"target({s})": e for s, e in stance.target.items()}
+        self._texts |= {f"next({s})": e for s, e in stance.next.items()}
+        self._column = {c: k for k, lib in enumerate(claim.libraries) for c in lib.columns}
+
+    def name(self, wanted: str) -> int:
+        """The gate of a name, or of `target(s)` and `next(s)`; definitions first, without recursion."""
+        stack = [wanted]
+        while stack:
+            top = stack[-1]
+            open_names = [n for n in self._uses(top) if n not in self._known] if top not in self._known else []
+            if open_names:
+                stack.extend(open_names)
+                continue
+            stack.pop()
+            if top not in self._known:
+                gate = self._gate(top)
+                self._known[top] = self.graph.add("mark", gate, name=top) if top == self.cut else gate
+        return self._known[wanted]
+
+    def node(self, expression: Expression) -> int:
+        for n in _names(expression):
+            self.name(n)
+        return self._build(expression)
+
+    def _uses(self, name: str) -> list[str]:
+        if name in self._texts:
+            return _names(self._texts[name])
+        if name in self._column:
+            return [n for e in self.claim.libraries[self._column[name]].at for n in _names(e)]
+        return []
+
+    def _gate(self, name: str) -> int:
+        if name in self._texts:
+            return self._build(self._texts[name])
+        if name in self._column:
+            number = self._column[name]
+            axes = [self._build(e) for e in self.claim.libraries[number].at]
+            return self.graph.add("reading", *axes, value=Fraction(number), name=name)
+        return self.graph.add("variable", name=name)
+
+    def _build(self, expression: Expression) -> int:
+        g, done = self.graph, list[int]()
+        for node in expression.nodes:
+            args = [done[a] for a in node.args]
+            if node.op == "number":
+                done.append(g.number(node.value or 0))
+            elif node.op in ("name", "target", "next"):
+                done.append(self._known[_full(node.op, node.name or "")])
+            elif node.op == "power":
+                done.append(g.power(args[0], node.value or Fraction(0)))
+            elif node.op == "bezier":
+                done.append(self._bezier(args[0], args[1:]))
+            else:
+                done.append(g.add(node.op, *args))
+        return done[-1]
+
+    def _bezier(self, s: int, points: list[int]) -> int:
+        """De Casteljau's scheme, which is the Bernstein form."""
+        g = self.graph
+        while len(points) > 1:
+            points = [
+                g.add("add", a, g.add("mul", s, g.add("sub", b, a)))
+                for a, b in zip(points, points[1:], strict=False)
+            ]
+        return points[0]
+
+
+def _full(op: str, name: str) -> str:
+    return name if op == "name" else f"{op}({name})"
+
+
+def _names(expression: Expression) -> list[str]:
+    return [_full(n.op, n.name or "") for n in expression.nodes if n.op in ("name", "target", "next")]

@@ -1,0 +1,249 @@
+"""What has to be proved for a one-state claim: one list of names and meanings (proofs/obligations.md).
+
+The checker derives the same list from the claim's text on its own; tests hold the two against each other.
+"""
+
+from __future__ import annotations
+
+from collections.abc import Mapping
+from dataclasses import dataclass
+from fractions import Fraction
+
+from .constants import constant
+from .graph import CORNERS, Graph, Scope
+from .model import Claim, Quantity, Range, Requirement
+
+PROVABLE = ("settles", "gain", "residual", "bound", "radius", "sensitivity", "value")
+Ends = tuple[Fraction, Fraction]
+
+
+@dataclass(frozen=True, slots=True)
+class Variable:
+    """A quantity an obligation ranges over, cut into cells that cover it.
+
+    `cells` lie between library grid lines, or are the values of a finite list; `inside` is where a point may
+    lie (smaller than the cells only where an end is irrational); `listed` tells a finite list.
+    """
+
+    name: str
+    cells: tuple[Ends, ...]
+    inside: Ends
+    listed: bool
+
+
+@dataclass(frozen=True, slots=True)
+class Obligation:
+    """The range of a gate, or of its partial derivative by the marked name `by`, over the variables."""
+
+    name: str
+    root: int
+    by: str
+    variables: tuple[Variable, ...]
+
+
+@dataclass(frozen=True, slots=True)
+class Domain:
+    """The convex set an obligation refers to: the region, or the ball of a radius about the target.
+
+    `target` is a proved enclosure of the target over all values it may take.
+    """
+
+    kind: str
+    radius: Fraction
+    target: Ends
+
+
+class Obligations:
+    """The obligations of a one-state closed-form claim over one shared graph."""
+
+    def __init__(self, claim: Claim) -> None:
+        self.claim, self.stance, self.graph = claim, claim.stances[0], Graph()
+        (self.state,) = self.stance.states
+        self._fixed_target = not self.graph.variables(self._scope({}).name(f"target({self.state})"))
+
+    def _scope(self, bound: Mapping[str, int], cut: str = "") -> Scope:
+        return Scope(self.graph, self.claim, self.stance, bound, cut)
+
+    def target(self) -> Obligation:
+        """target[s]: x* over the held quantities."""
+        return self._of(f"target[{self.state}]", self._scope({}).name(f"target({self.state})"))
+
+    def image(self) -> Obligation:
+        """image[s]: F over region and uncertain values."""
+        return self._of(f"image[{self.state}]", self._scope({}).name(f"next({self.state})"))
+
+    def slope(self, domain: Domain) -> Obligation:
+        """slope[s,s]: ∂F/∂s over the set and uncertain values."""
+        bound, ranges = self._set(domain)
+        root = self._scope(bound, cut=self.state).name(f"next({self.state})")
+        return self._of(f"slope[{self.state},{self.state}]", root, self.state, ranges)
+
+    def miss(self) -> Obligation:
+        """target-miss[s]: F(x*, w) − x* over uncertain values."""
+        target = self._scope({}).name(f"target({self.state})")
+        step = self._scope({self.state: target}).name(f"next({self.state})")
+        return self._of(f"target-miss[{self.state}]", self.graph.add("sub", step, target))
+
+    def moving(self) -> list[str]:
+        """Held quantities with a `change` on which the target depends."""
+        met = self.graph.variables(self._scope({}).name(f"target({self.state})"))
+        return [h for h in met if self.claim.uncertain[h].change is not None]
+
+    def target_slope(self, held: str) -> Obligation:
+        """target-slope[s,h]: ∂x*/∂h over the held quantities."""
+        root = self._scope({}, cut=held).name(f"target({self.state})")
+        # the mean value theorem runs along a segment, so a finite list counts as all that lies between
+        hulls = {h: (self._occurs(self.claim.uncertain[h]),) * 2 for h in self.moving()}
+        return self._of(f"target-slope[{self.state},{held}]", root, held, hulls)
+
+    def requirement(self, number: int, domain: Domain) -> Obligation:
+        """require[i] of a `value` or `sensitivity`: its range over the set, or over what `over` says."""
+        wanted = self.claim.requirements[number - 1]
+        bound, ranges = self._set(domain, wanted.over)
+        scope = self._scope(bound, cut=wanted.by or "")
+        if wanted.expression is not None:
+            return self._of(f"require[{number}]", scope.node(wanted.expression), "", ranges)
+        return self._of(f"require[{number}]", scope.name(f"next({wanted.state})"), wanted.by or "", ranges)
+
+    def ranging(self, gate: int) -> Obligation:
+        """The range of any gate over the region and all uncertain values."""
+        return self._of("part", gate)
+
+    def leaves_out(self, requirement: Requirement) -> list[str]:
+        """Declared names for which `over` leaves out values that occur."""
+        left = []
+        for name, given in requirement.over.items():
+            low, high = self._outer(given)
+            quantity = self.stance.states.get(name) or self.claim.uncertain.get(name)
+            if quantity is not None:
+                occurs = self._occurs(quantity)
+            elif name in self.claim.values:
+                occurs = self.claim.values[name]
+            else:
+                continue
+            if occurs[0] < low or occurs[1] > high:
+                left.append(name)
+        return left
+
+    def _set(
+        self, domain: Domain, over: Mapping[str, Range] | None = None
+    ) -> tuple[dict[str, int], dict[str, tuple[Ends, Ends]]]:
+        """Gates and ranges that replace names, so that the state runs through the set."""
+        s, g = self.state, self.graph
+        bound: dict[str, int] = {}
+        ranges: dict[str, tuple[Ends, Ends]] = {}
+        for name, given in (over or {}).items():
+            bound[name] = g.add("variable", name=name)
+            ranges[name] = self._outer(given), self._inner(given)
+        if domain.kind == "ball" and s not in bound:
+            (low, high), r = domain.target, domain.radius
+            if self._fixed_target:
+                ranges[s] = (low - r, high + r), (high - r, low + r)
+            else:
+                # the ball moves with the target: proofs/invariant-set.md, sheared set
+                ranges[f"error({s})"] = (-r, r), (-r, r)
+                about = self._scope(bound).name(f"target({s})")
+                bound[s] = g.add("add", about, g.add("variable", name=f"error({s})"))
+        return bound, ranges
+
+    def _of(
+        self, name: str, root: int, by: str = "", ranges: Mapping[str, tuple[Ends, Ends]] | None = None
+    ) -> Obligation:
+        return Obligation(name, root, by, tuple(self._variable(v, root, ranges or {}) for v in self.graph.variables(root)))
+
+    def _variable(self, name: str, root: int, ranges: Mapping[str, tuple[Ends, Ends]]) -> Variable:
+        cells, inside, listed = (
+            ((ranges[name][0],), ranges[name][1], False)
+            if name in ranges
+            else self._cells(self.stance.states.get(name) or self.claim.uncertain[name])
+        )
+        if not listed:
+            (low, high), lines = cells[0], self._lines(name, root)
+            ends = [low, *sorted(x for x in lines if low < x < high), high]
+            cells = tuple(zip(ends, ends[1:], strict=False))
+        return Variable(name, cells, inside, listed)
+
+    def _lines(self, name: str, root: int) -> set[Fraction]:
+        """Grid lines of the library axes that read a variable directly."""
+        gates, lines = self.graph.gates, set[Fraction]()
+        for k in self.graph.reached((root,)):
+            if gates[k].op == "reading":
+                for axis, a in enumerate(gates[k].args):
+                    while gates[a].op == "mark":
+                        a = gates[a].args[0]
+                    if gates[a].op == "variable" and gates[a].name == name:
+                        lines.update(self.claim.libraries[int(gates[k].value or 0)].grid[axis])
+        return lines
+
+    def _cells(self, quantity: Quantity) -> tuple[tuple[Ends, ...], Ends, bool]:
+        if quantity.values is not None:
+            cells = tuple(constant(e, self.claim.values) for e in quantity.values)
+            return cells, (cells[0][0], cells[-1][1]), True
+        if quantity.range is None:
+            raise ValueError(f"{quantity.name} has neither a range nor values")
+        return (self._outer(quantity.range),), self._inner(quantity.range), False
+
+    def _occurs(self, quantity: Quantity) -> Ends:
+        cells, _, _ = self._cells(quantity)
+        return min(c[0] for c in cells), max(c[1] for c in cells)
+
+    def region(self) -> tuple[Ends, Ends]:
+        """The region of the state: ends that surely contain it, and ends surely inside it."""
+        cells, inside, _ = self._cells(self.stance.states[self.state])
+        return cells[0], inside
+
+    def change(self, held: str) -> Fraction:
+        """Upper end of how far a held quantity moves in one step, at most the width of its range."""
+        quantity = self.claim.uncertain[held]
+        low, high = self._occurs(quantity)
+        moved = constant(quantity.change, self.claim.values)[1] if quantity.change is not None else Fraction(0)
+        return min(high - low, moved)
+
+    def _outer(self, given: Range) -> Ends:
+        return constant(given.lower, self.claim.values)[0], constant(given.upper, self.claim.values)[1]
+
+    def _inner(self, given: Range) -> Ends:
+        return constant(given.lower, self.claim.values)[1], constant(given.upper, self.claim.values)[0]
+
+
+def not_yet(claim: Claim) -> str | None:
+    """What of a well-formed claim cannot be proved yet, in one line; None if all of it can."""
+    stance = claim.stances[0]
+    if len(claim.stances) > 1 or stance.name:
+        return "stance: claims with stances cannot be proved yet; state one map that covers every step"
+    if stance.dynamics is not None:
+        return "dynamics: continuous stances cannot be proved yet; state the step-to-step map in closed form"
+    if len(stance.states) > 1:
+        return f"state: {len(stance.states)} states; only claims of one state can be proved yet"
+    if claim.horizon != 1:
+        return f"horizon: {claim.horizon}; only one step at a time can be proved yet; remove the key"
+    if claim.route not in ("best", "slope"):
+        return f"route: {claim.route} cannot be proved yet; use slope or best"
+    if claim.shrink:
+        return "shrink: smaller sets cannot be searched yet; remove the key, or state a smaller region"
+    for number, r in enumerate(claim.requirements, 1):
+        if r.kind not in PROVABLE:
+            return f"require[{number}]: {r.kind} cannot be proved yet; provable are {', '.join(PROVABLE)}"
+        if r.over and r.kind not in ("sensitivity", "value"):
+            return f"require[{number}]: over cannot be used with {r.kind} yet; use it with sensitivity or value"
+    for place, name in _corners(claim):
+        return f"{place}: {name} cannot be proved yet; state a smooth map"
+    return None
+
+
+def _corners(claim: Claim) -> list[tuple[str, str]]:
+    graph = Graph()
+    stance = claim.stances[0]
+    scope = Scope(graph, claim, stance)
+    places = [(f"next.{s}", scope.name(f"next({s})")) for s in stance.next]
+    places += [(f"target.{s}", scope.name(f"target({s})")) for s in stance.target]
+    for number, r in enumerate(claim.requirements, 1):
+        if r.expression is not None:
+            places.append((f"require[{number}]", scope.node(r.expression)))
+        if r.by is not None:
+            places.append((f"require[{number}]", scope.name(r.by)))
+    for place, root in places:
+        for k in graph.reached((root,)):
+            if graph.gates[k].op in CORNERS:
+                return [(place, graph.gates[k].op)]
+    return []

@@ -1,0 +1,306 @@
+"""Claim → step map → range of each obligation → theorems → requirements → certificate → check.
+
+Every number on a line is measured by the checker's own arithmetic on the tree that the search found; the finished
+certificate is checked again from its bytes before anyone sees it.
+"""
+
+from __future__ import annotations
+
+import time
+from collections.abc import Callable
+from dataclasses import dataclass
+from fractions import Fraction
+from math import log2
+
+from .bounding.defined import undefined_point
+from .bounding.evaluate import Runner, to_float
+from .bounding.search import Effort, Found, Point, search
+from .certificate.certificate import Certificate, sealed
+from .certificate.lines import Writer, downward, upward
+from .certificate.results import assembled
+from .checker import check
+from .checker.reals import Undefined
+from .checker.results import Results
+from .checker.rules import Rejected
+from .claim import Claim, ClaimError
+from .claim.obligations import Domain, Obligation, Obligations, not_yet
+from .contraction import enough_radius
+from .stepmap.symbolic import compiled
+
+BITS = 72
+SHARPER = 1e-2  # factor on the gap when an undecided requirement is pursued
+FINEST = 1e-11
+Watch = Callable[[str, int, float], None]
+
+
+class InternalError(Exception):
+    """The checker refuses a certificate that was just built: a defect of this program."""
+
+
+@dataclass(frozen=True, slots=True)
+class Proved:
+    """A range on a line: ends the checker measured, as a line number, and what stopped its search."""
+
+    line: int
+    lower: Fraction
+    upper: Fraction
+    stopped: str
+
+
+def prove(claim: Claim, watch: Watch | None = None) -> Certificate:
+    """Proves what it can of a claim and returns a certificate that the checker has accepted.
+
+    Raises ClaimError where the claim cannot be used (undefined at a point of its region, target outside, or of a
+    kind that cannot be proved yet). Ctrl-C stops the search; what was proved by then is kept, and the certificate
+    says so (`interrupted`).
+    """
+    problem = not_yet(claim)
+    if problem is not None:
+        raise ClaimError.of(claim.place, *problem.split(": ", 1))
+    undefined = undefined_point(claim)
+    if undefined is not None:
+        raise ClaimError.of(claim.place, *undefined)
+    gap = to_float(claim.gap)
+    until = time.monotonic() + to_float(claim.seconds)
+    while True:
+        attempt = Attempt(claim, gap, until, watch or (lambda stage, leaves, high: None))
+        certificate, pursue = attempt.certificate()
+        gap *= SHARPER
+        if not pursue or gap < FINEST or attempt.interrupted or time.monotonic() > until:
+            break
+    data = certificate.to_bytes()
+    verdict = check(data)
+    if verdict.status != "valid":
+        raise InternalError(f"{verdict.place}: {verdict.reason}")
+    return certificate
+
+
+class Attempt:
+    """One pass through the proof at one gap."""
+
+    def __init__(self, claim: Claim, gap: float, until: float, watch: Watch) -> None:
+        self.claim, self.gap, self.until, self.watch = claim, gap, until, watch
+        self.obligations, self.writer = Obligations(claim), Writer(claim)
+        self.interrupted = False
+        self.limits: dict[str, str] = {}
+        self._runners: dict[tuple[int, str], Runner] = {}
+
+    def certificate(self) -> tuple[Certificate, bool]:
+        """The certificate, and whether a smaller gap may still decide a requirement."""
+        s, w, o = self.obligations.state, self.writer, self.obligations
+        target = self.enclose(o.target(), None, points=True)
+        region, inner = o.region()
+        if target is None:
+            raise ClaimError.of(self.claim.place, f"target.{s}", "no finite range of the target can be shown; state it in a simpler form")
+        self._target_inside(target, region)
+        radius = min(target.lower - inner[0], inner[1] - target.upper)
+        if radius < 0:
+            raise ClaimError.of(self.claim.place, f"target.{s}", "cannot be shown to lie inside the region; widen the region a little")
+        ball = w.theorem("largest-ball", "ball", [target.line], {"radius": downward(radius)})
+        radius = w.proof.lines[ball].concludes["radius"]
+        domain, on = self._certified(target, Domain("ball", radius, (target.lower, target.upper)), ball)
+        pair = self._slope_route(domain, on)
+        invariant = on if on != ball else None
+        if invariant is None and pair is not None:
+            try:
+                invariant = w.theorem("invariant-ball", "invariant", [ball, pair], {})
+            except Rejected:
+                invariant = None
+        if invariant is not None and pair is not None:
+            self._bound(invariant, pair)
+        for number, r in enumerate(self.claim.requirements, 1):
+            if r.kind in ("value", "sensitivity"):
+                self.enclose(o.requirement(number, domain), on, points=True)
+        results = Results(w.proof)
+        remarks = [self._remark(n, results) for n in range(1, len(self.claim.requirements) + 1)]
+        text = assembled(self.claim, results, remarks)
+        return sealed(self.claim, text, w.raw, self.interrupted), any(p for _, p in remarks)
+
+    def _certified(self, target: Proved, ball: Domain, on: int) -> tuple[Domain, int]:
+        """S: the region if it is mapped into itself (then a line says so), else the largest ball in it."""
+        w, before = self.writer, len(self.writer.raw)
+        image = self.enclose(self.obligations.image(), None, points=False)
+        if image is not None:
+            try:
+                line = w.theorem("invariant-region", "invariant", [target.line, image.line], {})
+                return Domain("region", Fraction(0), ball.target), line
+            except Rejected:
+                pass
+        del w.raw[before:]
+        for n in [n for n in w.proof.lines if n > before]:
+            del w.proof.lines[n]
+        return ball, on
+
+    def _slope_route(self, domain: Domain, on: int) -> int | None:
+        """Gain and residual: proofs/slope.md."""
+        o, w = self.obligations, self.writer
+        parts = [self.enclose(o.slope(domain), on, magnitude=True), self.enclose(o.miss(), None, magnitude=True)]
+        parts += [self.enclose(o.target_slope(h), None, magnitude=True) for h in o.moving()]
+        known = [p for p in parts if p is not None]
+        if len(known) < len(parts):
+            return None
+        gain, residual, *moved = (max(abs(p.lower), abs(p.upper)) for p in known)
+        residual += sum((m * w.derivation.change(h)[1] for m, h in zip(moved, o.moving(), strict=True)), Fraction(0))
+        uses = [p.line for p in known]
+        return w.theorem("slope", "slope", uses, {"gain": upward(gain), "residual": upward(residual)})
+
+    def _bound(self, invariant: int, pair: int) -> None:
+        concluded = self.writer.proof.lines[pair].concludes
+        if concluded["gain"] < 1:
+            bound = concluded["residual"] / (1 - concluded["gain"])
+            self.writer.theorem("ultimate-bound", "bound", [invariant, pair], {"bound": upward(bound)})
+
+    def enclose(
+        self, obligation: Obligation, on: int | None, magnitude: bool = False, points: bool = True
+    ) -> Proved | None:
+        """A range line and the points nearest its ends; None where the checker finds no finite range."""
+        w, name, gap = self.writer, obligation.name, self.gap
+        rational = w.rational(name, on)
+        for _ in range(5):
+            found = self._search(obligation, magnitude, gap)
+            bits = 0 if rational else BITS + _extra(found)
+            try:
+                ends = w.range(name, found.trees, bits, on)
+            except Undefined as why:
+                self.limits[name] = str(why)
+                gap /= 16
+                if found.stopped:
+                    return None
+                continue
+            taken = [self._point(name, p, bits, on) for p in (found.highest, found.lowest)]
+            if found.stopped or self._close(ends, [t[1] for t in taken if t], magnitude):
+                break
+            gap /= 8
+        else:
+            if name in self.limits:
+                return None
+        self.limits[name] = found.stopped
+        line = w.enclosed("range", name, {"bits": bits, "trees": list(found.trees)}, ends, on)
+        if points:
+            self._write_points(name, [t for t in taken if t], magnitude, bits, on)
+        concluded = w.proof.lines[line].concludes
+        return Proved(line, concluded["lower"], concluded["upper"], found.stopped)
+
+    def _search(self, obligation: Obligation, magnitude: bool, gap: float) -> Found:
+        key = obligation.root, obligation.by
+        if key not in self._runners:
+            names = [v.name for v in obligation.variables]
+            program = compiled(self.obligations.graph, obligation.root, obligation.by, names)
+            self._runners[key] = Runner(program, names, self.claim.libraries)
+
+        def watch(leaves: int, high: float) -> None:
+            self.watch(obligation.name, leaves, high)
+
+        try:
+            return search(self._runners[key], obligation, magnitude, Effort(gap, self.claim.cells, self.until, watch))
+        except KeyboardInterrupt:
+            if self.interrupted:
+                raise
+            self.interrupted, self.until = True, 0.0
+            return search(self._runners[key], obligation, magnitude, Effort(gap, self.claim.cells, 0.0))
+
+    def _point(
+        self, name: str, point: Point, bits: int, on: int | None
+    ) -> tuple[dict[str, str], tuple[Fraction, Fraction]] | None:
+        at = self.writer.spelled(name, point, on)
+        try:
+            return at, self.writer.point(name, at, bits, on)
+        except (Undefined, Rejected):
+            return None
+
+    def _close(self, ends: tuple[Fraction, Fraction], taken: list[tuple[Fraction, Fraction]], magnitude: bool) -> bool:
+        """Whether the measured ends are within the gap of values surely taken."""
+        if not taken:
+            return False
+        high, low = max(t[0] for t in taken), min(t[1] for t in taken)
+        gap = Fraction(self.gap)
+        floor = gap / 10**6
+        if magnitude:
+            most = max(high, -low, Fraction(0))
+            return max(abs(ends[0]), abs(ends[1])) - most <= max(gap * most, floor)
+        return ends[1] - high <= max(gap * abs(high), floor) and low - ends[0] <= max(gap * abs(low), floor)
+
+    def _write_points(
+        self, name: str, taken: list[tuple[dict[str, str], tuple[Fraction, Fraction]]], magnitude: bool, bits: int, on: int | None
+    ) -> None:
+        """The points that say most: the one of largest magnitude, or those of the largest and smallest value."""
+        if not taken:
+            return
+        top, bottom = max(taken, key=lambda t: t[1][0]), min(taken, key=lambda t: t[1][1])
+        chosen = [top] if top is bottom or top[0] == bottom[0] else [top, bottom]
+        if magnitude:
+            chosen = [max(chosen, key=lambda t: max(t[1][0], -t[1][1]))]
+        for at, ends in chosen:
+            self.writer.enclosed("point", name, {"at": at, "bits": bits}, ends, on)
+
+    def _target_inside(self, target: Proved, region: tuple[Fraction, Fraction]) -> None:
+        s = self.obligations.state
+        for n, line in self.writer.proof.lines.items():
+            if line.rule == "point" and (
+                line.concludes["lower"] > region[1] or line.concludes["upper"] < region[0]
+            ):
+                at = self.writer.raw[n - 1]["witness"]["at"]
+                where = ", ".join(f"{k} = {float(Fraction(v)):.6g}" for k, v in at.items() if not v.startswith("#"))
+                value = float(line.concludes["lower"])
+                raise ClaimError.of(
+                    self.claim.place, f"target.{s}",
+                    f"takes the value {value:.6g}{' at ' + where if where else ''}, outside the region "
+                    f"[{float(region[0]):.6g}, {float(region[1]):.6g}]; widen the region or narrow the held quantities",
+                )  # fmt: skip
+
+    def _remark(self, number: int, results: Results) -> tuple[str | None, bool]:
+        """What limits a requirement, for people; and whether a smaller gap may decide it."""
+        r, outcome = self.claim.requirements[number - 1], results.requirements[number - 1]
+        parts: list[str] = []
+        left = self.obligations.leaves_out(r)
+        if left:
+            parts.append(f"over leaves out values of {', '.join(left)} that occur")
+        elif results.derivation.leaves_out(results.statement.requirements[number - 1]):
+            parts.append("over sets a defined name free: its own expression is not used")
+        pursue = False
+        if outcome.verdict == "undecided":
+            names = [f"require[{number}]"] if r.kind in ("value", "sensitivity") else list(self.limits)
+            stops = {self.limits.get(n, "") for n in names} - {""}
+            parts += sorted(f"the search stopped at: {x}" for x in stops)
+            if self.interrupted:
+                parts.append("interrupted")
+            pursue = self._open(results, outcome.value, r.kind)
+            if not results.settled and r.kind in ("settles", "bound", "radius", "value", "sensitivity", "gain", "residual"):
+                parts.append("no set that is mapped into itself was found" + self._size_that_would_do(results))
+            elif r.kind == "settles":
+                parts.append("the bound is not below the radius of the set" + self._size_that_would_do(results))
+            elif not parts or pursue:
+                parts.append("the constant lies between what is proved and what is attained")
+        return ("; ".join(parts)[:900] or None), pursue
+
+    def _open(self, results: Results, value: object, kind: str) -> bool:
+        """Whether ends proved and attained leave room: only then does a smaller gap help."""
+        if kind in ("value", "sensitivity"):
+            return results.settled
+        g, e = results.gain, results.residual
+        spans = [x for x in (g, e) if x.lower is not None and x.upper is not None]
+        return any(x.upper - x.lower > Fraction(FINEST) * x.upper for x in spans if x.upper and x.lower is not None)
+
+    def _size_that_would_do(self, results: Results) -> str:
+        """An estimate of the region that would carry a bound, for a region too small."""
+        if results.residual.upper is None or results.gain.upper is None or self.interrupted:
+            return ""
+        target = (results.centre.lower or Fraction(0), results.centre.upper or Fraction(0))
+
+        def gain(radius: float) -> float:
+            domain = Domain("ball", Fraction(radius), target)
+            obligation = self.obligations.slope(domain)
+            found = self._search(obligation, True, 1e-2)
+            return max(abs(found.upper), abs(found.lower))
+
+        r = enough_radius(to_float(results.radius.lower or Fraction(0)), gain, to_float(results.residual.upper))
+        if r is None:
+            return "; no size of region was found that would do, as the gain is not below 1"
+        low, high = float(target[0]) - r, float(target[1]) + r
+        return f"; a region of [{low:.4g}, {high:.4g}] would do (an estimate, not proved)"
+
+
+def _extra(found: Found) -> int:
+    """More fractional bits where the values are small, so that their last digits are kept."""
+    size = max(abs(found.upper), abs(found.lower))
+    return min(2000, max(0, int(-log2(size)))) if 0 < size < 1 else 0

@@ -1,0 +1,1 @@
+"""What people see of a certificate."""

@@ -1,0 +1,1 @@
+"""The claim as a map: symbolic linearisation and programs over boxes."""

@@ -1,0 +1,230 @@
+"""Linearisation by sympy: assignments built gate by gate, differentiated, compiled into a program.
+
+Gates used more than once stay symbols of their own, so shared subexpressions are never expanded: the derivative of
+a system of assignments is again a system, by the chain rule.
+"""
+
+from __future__ import annotations
+
+from fractions import Fraction
+from typing import Any
+
+import sympy
+
+from ..claim.graph import Gate, Graph
+from .program import Program, Step
+
+INLINED_DEPTH = 12
+UNARY = ("exp", "log", "sin", "cos", "tan", "asin", "acos", "atan", "sinh", "cosh", "tanh", "sqrt")
+Expr = Any  # sympy ships no types
+
+
+class Reading(sympy.Function):  # type: ignore[misc]
+    """A library column read at axis values: Reading(library, column, axes…, orders…), orders of derivatives."""
+
+    def fdiff(self, argindex: int = 1) -> Expr:
+        axes, orders = reading_parts(self)
+        axis = argindex - 3
+        if orders[axis] == 1:  # multilinear: no second derivative along one axis within a cell
+            return sympy.Integer(0)
+        raised = [o + (k == axis) for k, o in enumerate(orders)]
+        return Reading(self.args[0], self.args[1], *axes, *raised)
+
+
+def reading_parts(reading: Expr) -> tuple[list[Expr], list[int]]:
+    rest = reading.args[2:]
+    half = len(rest) // 2
+    return list(rest[:half]), [int(o) for o in rest[half:]]
+
+
+class System:
+    """Symbols and what each stands for, in order; `gate[symbol]` is the gate a symbol came from."""
+
+    def __init__(self, graph: Graph, root: int) -> None:
+        self.graph, self.root = graph, root
+        self.symbol: dict[int, Expr] = {}
+        self.rule: list[tuple[Expr, Expr]] = []
+        reached = graph.reached((root,))
+        uses: dict[int, int] = dict.fromkeys(reached, 0)
+        for k in reached:
+            for a in graph.gates[k].args:
+                uses[a] += 1
+        varies: dict[int, bool] = {}
+        written: dict[int, Expr] = {}
+        depth: dict[int, int] = {}
+        for k in reached:
+            gate = graph.gates[k]
+            varies[k] = gate.op == "variable" or any(varies[a] for a in gate.args)
+            depth[k] = 1 + max((depth[a] for a in gate.args), default=0)
+            if gate.op == "number":
+                written[k] = _rational(gate.value)
+                continue
+            symbol = sympy.Symbol(f"g#{k}")
+            if gate.op == "variable" or not varies[k]:
+                written[k] = self.symbol[k] = symbol  # constants stay symbols: nothing is rewritten in them
+            elif k == root or gate.op == "mark" or uses[k] > 1 or depth[k] > INLINED_DEPTH:
+                self.rule.append((symbol, _expression(gate, [written[a] for a in gate.args])))
+                written[k] = self.symbol[k] = symbol
+                depth[k] = 0
+            else:
+                written[k] = _expression(gate, [written[a] for a in gate.args])
+        if root not in self.symbol:
+            self.symbol[root] = written[root]
+
+    def marked(self, name: str) -> Expr | None:
+        for k, symbol in self.symbol.items():
+            gate = self.graph.gates[k]
+            if gate.op == "mark" and gate.name == name:
+                return symbol
+        return None
+
+    def variable(self, name: str) -> Expr:
+        for k, symbol in self.symbol.items():
+            if self.graph.gates[k].op == "variable" and self.graph.gates[k].name == name:
+                return symbol
+        raise KeyError(name)
+
+
+def differentiated(
+    rule: list[tuple[Expr, Expr]], of: Expr, by: Expr, tag: str
+) -> tuple[list[tuple[Expr, Expr]], Expr]:
+    """The system extended by the derivatives by a symbol, and the expression of d(of)/d(by)."""
+    slope: dict[Expr, Expr] = {by: sympy.Integer(1)}
+    out: list[tuple[Expr, Expr]] = []
+    for symbol, meaning in rule:
+        out.append((symbol, meaning))
+        if symbol == by:  # a marked name: its own expression is cut (proofs/forms.md)
+            continue
+        total = chained(meaning, slope)
+        if total != 0:
+            if total.is_Number or total.is_Symbol:
+                slope[symbol] = total
+            else:
+                slope[symbol] = sympy.Symbol(f"{symbol}_{tag}")
+                out.append((slope[symbol], total))
+    return out, chained(of, slope)
+
+
+def chained(meaning: Expr, slope: dict[Expr, Expr]) -> Expr:
+    met = [s for s in meaning.free_symbols if s in slope]
+    met.sort(key=lambda s: s.name)
+    return sympy.Add(*(sympy.diff(meaning, s) * slope[s] for s in met))
+
+
+def compiled(graph: Graph, root: int, by: str, variables: list[str]) -> Program:
+    """Program of a gate's value (or of its derivative by the marked name) and of its gradient."""
+    system = System(graph, root)
+    rule, wanted = system.rule, system.symbol[root]
+    if by:
+        mark = system.marked(by)
+        if mark is None:
+            rule, wanted = rule, sympy.Integer(0)
+        else:
+            rule, wanted = differentiated(rule, wanted, mark, "d")
+    program = Program()
+    registers = _native(graph, root, program)
+    program.checks = tuple(sorted(set(registers.values())))
+    known: dict[Expr, int] = {s: registers[k] for k, s in system.symbol.items() if s.is_Symbol}
+    _assign(program, rule, known)
+    program.value = _register(program, wanted, known)
+    for v in variables:
+        extended, slope = differentiated(rule, wanted, system.variable(v), f"x{v}")
+        if slope != 0:
+            _assign(program, extended, known)
+            program.gradient[v] = _register(program, slope, known)
+    return program
+
+
+def _native(graph: Graph, root: int, program: Program) -> dict[int, int]:
+    """Registers of the claim's own operations, untouched by symbolic rewriting."""
+    registers: dict[int, int] = {}
+    for k in graph.reached((root,)):
+        gate = graph.gates[k]
+        args = tuple(registers[a] for a in gate.args)
+        if gate.op == "mark":
+            registers[k] = args[0]
+        elif gate.op == "neg":
+            registers[k] = program.add(Step("mul", (program.add(Step("number", value=Fraction(-1))), args[0])))
+        elif gate.op == "reading":
+            registers[k] = program.add(Step("reading", args, gate.value, gate.name, (0,) * len(args)))
+        else:
+            registers[k] = program.add(Step(gate.op, args, gate.value, gate.name))
+    return registers
+
+
+def _assign(program: Program, rule: list[tuple[Expr, Expr]], known: dict[Expr, int]) -> None:
+    for symbol, meaning in rule:
+        if symbol not in known:
+            known[symbol] = _register(program, meaning, known)
+
+
+def _register(program: Program, e: Expr, known: dict[Expr, int]) -> int:
+    """Register of an expression; equal subexpressions share one."""
+    if e in known:
+        return known[e]
+    if e.is_Rational:
+        step = Step("number", value=Fraction(int(e.p), int(e.q)))
+    elif e == sympy.pi:
+        step = Step("pi")
+    elif e == sympy.E:
+        step = Step("exp", (_register(program, sympy.Integer(1), known),))
+    elif e.is_Add or e.is_Mul:
+        op = "add" if e.is_Add else "mul"
+        parts = [_register(program, a, known) for a in e.args]
+        while len(parts) > 2:
+            parts = [program.add(Step(op, (parts[0], parts[1]))), *parts[2:]]
+        step = Step(op, (parts[0], parts[1]))
+    elif e.is_Pow:
+        return _power(program, e, known)
+    elif isinstance(e, Reading):
+        axes, orders = reading_parts(e)
+        args = tuple(_register(program, a, known) for a in axes)
+        step = Step("reading", args, Fraction(int(e.args[0])), str(e.args[1]).removeprefix("column "), tuple(orders))
+    else:
+        step = Step(type(e).__name__.lower(), tuple(_register(program, a, known) for a in e.args))
+    known[e] = program.add(step)
+    return known[e]
+
+
+def _power(program: Program, e: Expr, known: dict[Expr, int]) -> int:
+    base = _register(program, e.base, known)
+    p = e.exp
+    if not p.is_Rational or p.q not in (1, 2):  # exp(x)**… is folded by sympy into exp; nothing else arises
+        log = program.add(Step("log", (base,)))
+        known[e] = program.add(Step("exp", (program.add(Step("mul", (log, _register(program, p, known)))),)))
+        return known[e]
+    if p.q == 2:
+        base = program.add(Step("sqrt", (base,)))
+    n = int(p.p)
+    whole = base if abs(n) == 1 else program.add(Step("power", (base,), Fraction(abs(n))))
+    one = program.add(Step("number", value=Fraction(1)))
+    known[e] = whole if n > 0 else program.add(Step("div", (one, whole)))
+    return known[e]
+
+
+def _rational(value: Fraction | None) -> Expr:
+    q = value or Fraction(0)
+    return sympy.Rational(q.numerator, q.denominator)
+
+
+def _expression(gate: Gate, args: list[Expr]) -> Expr:
+    if gate.op == "add":
+        return args[0] + args[1]
+    if gate.op == "sub":
+        return args[0] - args[1]
+    if gate.op == "mul":
+        return args[0] * args[1]
+    if gate.op == "div":
+        return args[0] / args[1]
+    if gate.op == "neg":
+        return -args[0]
+    if gate.op == "power":
+        return args[0] ** int(gate.value or 1)
+    if gate.op == "mark":
+        return args[0]
+    if gate.op == "reading":
+        column = sympy.Symbol(f"column {gate.name}")
+        return Reading(sympy.Integer(int(gate.value or 0)), column, *args, *(sympy.Integer(0) for _ in args))
+    if gate.op in UNARY:
+        return getattr(sympy, gate.op)(args[0])
+    raise ValueError(f"{gate.op} has no smooth symbolic form")
