@@ -5,6 +5,8 @@
 
 from __future__ import annotations
 
+import sys
+from types import ModuleType
 from typing import TYPE_CHECKING, Any
 
 if TYPE_CHECKING:
@@ -33,3 +35,14 @@ def __getattr__(name: str) -> Any:
     from importlib import import_module
 
     return getattr(import_module(_HOMES[name], __name__), name)
+
+
+class _Package(ModuleType):
+    """Keeps `ultibound.prove` the function once its module of the same name is loaded."""
+
+    def __setattr__(self, name: str, value: Any) -> None:
+        if not (name in _HOMES and isinstance(value, ModuleType)):
+            super().__setattr__(name, value)
+
+
+sys.modules[__name__].__class__ = _Package
