@@ -1,7 +1,8 @@
 """Linearisation by sympy: assignments built gate by gate, differentiated, compiled into a program.
 
-Gates used more than once stay symbols of their own, so shared subexpressions are never expanded: the derivative of
-a system of assignments is again a system, by the chain rule.
+Every gate stays a symbol of its own, so shared subexpressions are never expanded, and nothing is rewritten across
+gates into a form that the checker's forward differentiation would not see: the derivative of a system of
+assignments is again a system, by the chain rule.
 """
 
 from __future__ import annotations
@@ -14,7 +15,6 @@ import sympy
 from ..claim.graph import Gate, Graph
 from .program import Program, Step
 
-INLINED_DEPTH = 12
 UNARY = ("exp", "log", "sin", "cos", "tan", "asin", "acos", "atan", "sinh", "cosh", "tanh", "sqrt")
 Expr = Any  # sympy ships no types
 
@@ -45,29 +45,20 @@ class System:
         self.symbol: dict[int, Expr] = {}
         self.rule: list[tuple[Expr, Expr]] = []
         reached = graph.reached((root,))
-        uses: dict[int, int] = dict.fromkeys(reached, 0)
-        for k in reached:
-            for a in graph.gates[k].args:
-                uses[a] += 1
         varies: dict[int, bool] = {}
         written: dict[int, Expr] = {}
-        depth: dict[int, int] = {}
         for k in reached:
             gate = graph.gates[k]
             varies[k] = gate.op == "variable" or any(varies[a] for a in gate.args)
-            depth[k] = 1 + max((depth[a] for a in gate.args), default=0)
             if gate.op == "number":
                 written[k] = _rational(gate.value)
                 continue
             symbol = sympy.Symbol(f"g#{k}")
             if gate.op == "variable" or not varies[k]:
                 written[k] = self.symbol[k] = symbol  # constants stay symbols: nothing is rewritten in them
-            elif k == root or gate.op == "mark" or uses[k] > 1 or depth[k] > INLINED_DEPTH:
+            else:
                 self.rule.append((symbol, _expression(gate, [written[a] for a in gate.args])))
                 written[k] = self.symbol[k] = symbol
-                depth[k] = 0
-            else:
-                written[k] = _expression(gate, [written[a] for a in gate.args])
         if root not in self.symbol:
             self.symbol[root] = written[root]
 
