@@ -48,6 +48,8 @@ def sample(name: str) -> dict[str, Any]:
     if name == "ball":
         return proved(BALL.replace("0.8*(v - c)**3", "0.02*(v - c)**3")).entries
     text = (EXAMPLES / f"{name}.toml").read_text()
+    if name == "walking":  # fewer cells, so that hundreds of checks stay quick
+        text = text.replace("[0.34, 0.44]", "[0.36, 0.38]") + "[effort]\ngap = 0.02\n"
     return proved(text, data={"gaits.csv": (EXAMPLES / "gaits.csv").read_text()} if "gaits.csv" in text else {}).entries
 
 
@@ -192,7 +194,7 @@ def test_another_claim_is_rejected(entries: dict[str, Any]) -> None:
     text = entries["claim"]["text"]
     harder = [(a, b) for a, b in [
         ("kappa = 0.1 ", "kappa = 0.02 "), ("kappa = 0.09", "kappa = 0.01"), ("kappa = 0.3 ", "kappa = 0.05 "),
-        ("T = { range = [0.36, 0.40]", "T = { range = [0.30, 0.40]"), ("[0.34, 0.44]", "[0.32, 0.46]"),
+        ("T = { range = [0.36, 0.40]", "T = { range = [0.30, 0.40]"), ("[0.36, 0.38]", "[0.32, 0.46]"),
         ("d = [-0.05, 0.05]", "d = [-0.09, 0.05]"), ("values = [0.1, 0.2]", "values = [0.1, 0.2, 2]"),
         ("change = 0.01", "change = 0.05"), ("g = 9.81", "g = 9.5"), ("range = [-0.2, 1.0]", "range = [-0.1, 0.9]"),
     ] if a in text]  # fmt: skip

@@ -7,13 +7,28 @@ import os
 import sys
 import time
 from collections.abc import Callable
+from functools import wraps
 from pathlib import Path
-from typing import Any
+from typing import Any, ParamSpec
 
 import click
 
 INTERNAL, INTERRUPTED, CLOSED_PIPE = 70, 130, 141
+P = ParamSpec("P")
 HELP = {"help_option_names": ["-h", "--help"]}
+
+
+def pipe_told_apart(command: Callable[P, None]) -> Callable[P, None]:
+    """A reader that went away (`| head -1`) ends a command with its own status; click would make it 1, a verdict."""
+
+    @wraps(command)
+    def inner(*arguments: P.args, **options: P.kwargs) -> None:
+        try:
+            command(*arguments, **options)
+        except BrokenPipeError:
+            sys.exit(_silenced())
+
+    return inner
 
 
 @click.group(context_settings=HELP)
@@ -28,6 +43,7 @@ def cli() -> None:
 @click.option("--set", "settings", multiple=True, metavar="GAIN=VALUE", help="Replace a gain of the claim.")
 @click.option("--gain-interval", metavar="GAIN", help="The proved interval of a gain.")
 @click.option("--json", "as_json", is_flag=True, help="Print `results` as JSON on standard output.")
+@pipe_told_apart
 def prove(claim: str, output: str | None, settings: tuple[str, ...], gain_interval: str | None, as_json: bool) -> None:
     """Search for a proof of CLAIM, check it, write the certificate, print the outcome.
 
@@ -41,6 +57,7 @@ def prove(claim: str, output: str | None, settings: tuple[str, ...], gain_interv
 @cli.command()
 @click.option("-o", "--output", "folder", type=click.Path(), default="ultibound-demo", show_default=True,
               help="Folder for the example claims and the certificate.")  # fmt: skip
+@pipe_told_apart
 def demo(folder: str) -> None:
     """Write the example claims into a folder and prove the main one. Exit status as for prove."""
     from importlib import resources
@@ -64,6 +81,7 @@ def demo(folder: str) -> None:
 @click.option("--all-proved", is_flag=True, help="Also: every requirement is proved.")
 @click.option("--json", "as_json", is_flag=True, help="Print `results` as JSON on standard output.")
 @click.option("--lines", is_flag=True, help="Print the proof line by line.")
+@pipe_told_apart
 def check(certificate: str, claim: str | None, all_proved: bool, as_json: bool, lines: bool) -> None:
     """Re-verify CERTIFICATE, trusting nothing in it.
 
@@ -155,7 +173,7 @@ def guarded(command: Callable[[], Any]) -> int:
         click.echo("interrupted", err=True)
         return INTERRUPTED
     except BrokenPipeError:
-        return _closed(CLOSED_PIPE)
+        return _silenced()
     except Exception as why:
         click.echo(
             f"internal error: {type(why).__name__}: {str(why)[:300]}\n"
@@ -168,10 +186,14 @@ def guarded(command: Callable[[], Any]) -> int:
 
 
 def _closed(code: int) -> int:
-    """Flushes; a reader that went away (`| head -1`) is told apart from a verdict."""
     try:
         sys.stdout.flush()
     except BrokenPipeError:
-        os.dup2(os.open(os.devnull, os.O_WRONLY), sys.stdout.fileno())
-        return CLOSED_PIPE
+        return _silenced()
     return code
+
+
+def _silenced() -> int:
+    """Nothing more can be written; keeps the interpreter from trying again at its end."""
+    os.dup2(os.open(os.devnull, os.O_WRONLY), sys.stdout.fileno())
+    return CLOSED_PIPE

@@ -30,6 +30,7 @@ from .stepmap.symbolic import compiled
 BITS = 72
 SHARPER = 1e-2  # factor on the gap when an undecided requirement is pursued
 FINEST = 1e-11
+COARSE = 0.03
 Watch = Callable[[str, int, float], None]
 
 
@@ -114,21 +115,18 @@ class Attempt:
         results = Results(w.proof)
         remarks = [self._remark(n, results) for n in range(1, len(self.claim.requirements) + 1)]
         text = assembled(self.claim, results, remarks)
-        return sealed(self.claim, text, w.raw, self.interrupted), any(p for _, p in remarks)
+        return sealed(self.claim, text, w.pruned(results.needed), self.interrupted), any(p for _, p in remarks)
 
     def _certified(self, target: Proved, ball: Domain, on: int) -> tuple[Domain, int]:
         """S: the region if it is mapped into itself (then a line says so), else the largest ball in it."""
-        w, before = self.writer, len(self.writer.raw)
-        image = self.enclose(self.obligations.image(), None, points=False)
-        if image is not None:
-            try:
-                line = w.theorem("invariant-region", "invariant", [target.line, image.line], {})
-                return Domain("region", Fraction(0), ball.target), line
-            except Rejected:
-                pass
-        del w.raw[before:]
-        for n in [n for n in w.proof.lines if n > before]:
-            del w.proof.lines[n]
+        for gap in (COARSE, self.gap):  # only inclusion counts: few leaves show it where there is room
+            image = self.enclose(self.obligations.image(), None, points=False, gap=gap)
+            if image is not None:
+                try:
+                    line = self.writer.theorem("invariant-region", "invariant", [target.line, image.line], {})
+                    return Domain("region", Fraction(0), ball.target), line
+                except Rejected:
+                    continue
         return ball, on
 
     def _slope_route(self, domain: Domain, on: int) -> int | None:
@@ -151,10 +149,11 @@ class Attempt:
             self.writer.theorem("ultimate-bound", "bound", [invariant, pair], {"bound": upward(bound)})
 
     def enclose(
-        self, obligation: Obligation, on: int | None, magnitude: bool = False, points: bool = True
+        self, obligation: Obligation, on: int | None, magnitude: bool = False, points: bool = True, gap: float = 0.0
     ) -> Proved | None:
         """A range line and the points nearest its ends; None where the checker finds no finite range."""
-        w, name, gap = self.writer, obligation.name, self.gap
+        w, name, wanted = self.writer, obligation.name, gap or self.gap
+        gap = wanted
         rational = w.rational(name, on)
         for _ in range(5):
             found = self._search(obligation, magnitude, gap)
@@ -168,7 +167,7 @@ class Attempt:
                     return None
                 continue
             taken = [self._point(name, p, bits, on) for p in (found.highest, found.lowest)]
-            if found.stopped or self._close(ends, [t[1] for t in taken if t], magnitude):
+            if found.stopped or _close(ends, [t[1] for t in taken if t], magnitude, Fraction(wanted)):
                 break
             gap /= 8
         else:
@@ -207,18 +206,6 @@ class Attempt:
             return at, self.writer.point(name, at, bits, on)
         except (Undefined, Rejected):
             return None
-
-    def _close(self, ends: tuple[Fraction, Fraction], taken: list[tuple[Fraction, Fraction]], magnitude: bool) -> bool:
-        """Whether the measured ends are within the gap of values surely taken."""
-        if not taken:
-            return False
-        high, low = max(t[0] for t in taken), min(t[1] for t in taken)
-        gap = Fraction(self.gap)
-        floor = gap / 10**6
-        if magnitude:
-            most = max(high, -low, Fraction(0))
-            return max(abs(ends[0]), abs(ends[1])) - most <= max(gap * most, floor)
-        return ends[1] - high <= max(gap * abs(high), floor) and low - ends[0] <= max(gap * abs(low), floor)
 
     def _write_points(
         self, name: str, taken: list[tuple[dict[str, str], tuple[Fraction, Fraction]]], magnitude: bool, bits: int, on: int | None
@@ -299,6 +286,17 @@ class Attempt:
         low, high = float(target[0]) - r, float(target[1]) + r
         return f"; a region of [{low:.4g}, {high:.4g}] would do (an estimate, not proved)"
 
+
+def _close(ends: tuple[Fraction, Fraction], taken: list[tuple[Fraction, Fraction]], magnitude: bool, gap: Fraction) -> bool:
+    """Whether the measured ends are within the gap of values surely taken."""
+    if not taken:
+        return False
+    high, low = max(t[0] for t in taken), min(t[1] for t in taken)
+    floor = gap / 10**6
+    if magnitude:
+        most = max(high, -low, Fraction(0))
+        return max(abs(ends[0]), abs(ends[1])) - most <= max(gap * most, floor)
+    return ends[1] - high <= max(gap * abs(high), floor) and low - ends[0] <= max(gap * abs(low), floor)
 
 def _extra(found: Found) -> int:
     """More fractional bits where the values are small, so that their last digits are kept."""

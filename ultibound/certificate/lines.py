@@ -91,6 +91,16 @@ class Writer:
         self.raw.append(line)
         return len(self.raw)
 
+    def pruned(self, needed: set[int]) -> list[dict[str, Any]]:
+        """The lines that later lines or results rest on, numbered anew."""
+        waiting, kept = list(needed), set(needed)
+        while waiting:
+            fresh = set(self.raw[waiting.pop() - 1]["uses"]) - kept
+            kept |= fresh
+            waiting += fresh
+        number = {old: new for new, old in enumerate(sorted(kept), 1)}
+        return [{**self.raw[n - 1], "uses": [number[u] for u in self.raw[n - 1]["uses"]]} for n in sorted(kept)]
+
     def _evaluator(self, proves: str, bits: int, on: int | None) -> tuple[Meaning, Evaluator]:
         meaning = self.derivation.meaning(proves, self.domain(on))
         names = [v.name for v in meaning.variables]

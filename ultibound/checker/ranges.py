@@ -5,6 +5,7 @@ proofs/forms.md, proofs/reading.md, proofs/splitting.md.
 
 from __future__ import annotations
 
+from bisect import bisect_left, bisect_right
 from collections.abc import Sequence
 from fractions import Fraction
 from itertools import product
@@ -290,9 +291,9 @@ def met(grid: tuple[Fraction, ...], low: Fraction, high: Fraction) -> range:
     if low < grid[0] or high > grid[-1]:
         span = f"[{decimal_down(low, 6)}, {decimal_up(high, 6)}]"
         raise Undefined(f"a library axis is read over {span}, beyond its grid")
-    first = max((i for i in range(len(grid) - 1) if grid[i] <= low), default=0)
-    last = max((i for i in range(len(grid) - 1) if grid[i] < high), default=first)
-    return range(min(first, len(grid) - 2), max(first, last) + 1)
+    first = min(bisect_right(grid, low) - 1, len(grid) - 2)  # the last line not above low
+    last = bisect_left(grid, high) - 1  # the last line below high
+    return range(first, max(first, last) + 1)
 
 
 def enclose(evaluator: Evaluator, box: Box, form: str) -> Interval:

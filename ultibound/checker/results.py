@@ -45,12 +45,9 @@ class Results:
         bounded = self.one("ultimate-bound", "bound")
         if pair is not None and pair.domain != self.domain:
             raise Rejected("gain and residual refer to another set")
-        target, (region, _) = self.attained(f"target[{s}]"), self.derivation.region()
-        reach = [] if target.upper is None else [region[1] - target.upper]
-        reach += [] if target.lower is None else [target.lower - region[0]]
         centre = proof.lines[ball.uses[0]].concludes
         self.centre = Span(centre["lower"], centre["upper"])
-        self.radius = Span(ball.concludes["radius"], min(reach, default=None))
+        self.radius = Span(ball.concludes["radius"], self.reach() if self.settled else None)
         self.gain = self.residual = Span(None, None)
         self.bound: Span | None = None
         if pair is not None:
@@ -62,6 +59,18 @@ class Results:
                 lower = None if k is None or least is None or k >= 1 else least / (1 - k)
                 self.bound = Span(lower, bounded.concludes["bound"])
         self.requirements = [self.required(n, r) for n, r in enumerate(self.statement.requirements, 1)]
+
+    def reach(self) -> Fraction | None:
+        """The least distance to the edge of the region of a target surely taken."""
+        (low, high), _ = self.derivation.region()
+        found = [
+            (min(high - x.concludes["lower"], x.concludes["upper"] - low), n)
+            for n, x in self.lines("point", f"target[{self.state}]")
+        ]
+        if not found:
+            return None
+        self.needed.add(min(found)[1])
+        return min(found)[0]
 
     def moved_at_least(self, residual: Fraction | None) -> Fraction | None:
         """The residual surely reached: miss of the target and how far held quantities surely move it."""
