@@ -11,7 +11,7 @@ import numpy as np
 
 from ..claim.model import Library
 from ..stepmap.program import Program, Step
-from .intervals import UNARY, Floats, Pair, Table, div, mul, power
+from .intervals import UNARY, Branch, Floats, Pair, Table, div, mul, power
 
 
 @dataclass(frozen=True, slots=True)
@@ -23,6 +23,11 @@ class Run:
     gradient_low: Floats  # (boxes, variables)
     gradient_high: Floats
     split: Any
+    branches: dict[int, Branch]
+
+    def branches_of(self, rows: Any) -> dict[int, Branch]:
+        """Cells met by the boxes of the given rows, for evaluating parts of them on the same branch."""
+        return {k: ([f[rows] for f in firsts], [s[rows] for s in spans]) for k, (firsts, spans) in self.branches.items()}
 
 
 class Runner:
@@ -36,16 +41,24 @@ class Runner:
                 number = int(step.value or 0)
                 self._tables.setdefault((number, step.name), _table(libraries[number], step.name))
 
-    def __call__(self, low: Floats, high: Floats, gradient: bool = True) -> Run:
-        """Runs every step over boxes [low, high] of shape (boxes, variables)."""
+    def __call__(
+        self, low: Floats, high: Floats, gradient: bool = True, branches: dict[int, Branch] | None = None
+    ) -> Run:
+        """Runs every step over boxes [low, high] of shape (boxes, variables); `branches` fixes library cells."""
         count, wanted = len(low), [self.program.value, *self.program.checks]
         if gradient:
             wanted += self.program.gradient.values()
         done: list[Pair] = []
-        split = np.zeros(count, bool)
+        met: dict[int, Branch] = {}
         with np.errstate(all="ignore"):
-            for step in self.program.steps[: max(wanted) + 1]:
-                done.append(self._step(step, done, low, high, split))
+            for number, step in enumerate(self.program.steps[: max(wanted) + 1]):
+                if step.op == "reading":
+                    table = self._tables[int(step.value or 0), step.name]
+                    fixed = branches.get(number) if branches else None
+                    pair, met[number] = table.read([done[a] for a in step.args], step.orders, count, fixed)
+                    done.append(pair)
+                else:
+                    done.append(self._step(step, done, low, high))
             defined = np.ones(count, bool)
             for k in self.program.checks:
                 defined &= np.isfinite(done[k][0]) & np.isfinite(done[k][1])
@@ -56,9 +69,12 @@ class Runner:
                 if v in self.program.gradient:
                     pair = _finite(done[self.program.gradient[v]], count, defined)
                     g_low[:, column], g_high[:, column] = pair
-        return Run(*value, g_low, g_high, split)
+        split = np.zeros(count, bool)
+        for _, spans in met.values():
+            split |= np.prod(spans, axis=0) > 1
+        return Run(*value, g_low, g_high, split, met)
 
-    def _step(self, step: Step, done: list[Pair], low: Floats, high: Floats, split: Any) -> Pair:
+    def _step(self, step: Step, done: list[Pair], low: Floats, high: Floats) -> Pair:
         args = [done[a] for a in step.args]
         match step.op:
             case "variable":
@@ -79,11 +95,6 @@ class Runner:
                 return div(args[0], args[1])
             case "power":
                 return power(args[0], int(step.value or 1))
-            case "reading":
-                table = self._tables[int(step.value or 0), step.name]
-                pair, several = table.read(args, step.orders, len(low))
-                split |= several
-                return pair
             case _:
                 return UNARY[step.op](args[0])
 

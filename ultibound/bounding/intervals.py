@@ -11,6 +11,7 @@ from numpy.typing import NDArray
 
 Floats = NDArray[np.float64]
 Pair = tuple[Floats, Floats]
+Branch = tuple[list[Any], list[Any]]
 GRID_TOLERANCE = 1e-12  # share of a cell by which a rounded axis value may miss a grid line
 
 
@@ -86,8 +87,11 @@ class Table:
     def __init__(self, grid: list[Floats], nodes: Floats) -> None:
         self.grid, self.nodes = grid, nodes
 
-    def read(self, axes: list[Pair], orders: tuple[int, ...], count: int) -> tuple[Pair, Any]:
-        """Range of the reading, or of its derivatives, a box; and which boxes meet several cells."""
+    def read(self, axes: list[Pair], orders: tuple[int, ...], count: int, branch: Branch | None) -> tuple[Pair, Branch]:
+        """Range of the reading, or of its derivatives, a box, and the cells met: first ones and counts, an axis.
+
+        `branch` gives the cells to use instead: those of the whole box when a part of it is evaluated.
+        """
         firsts, spans, outside = [], [], np.zeros(count, bool)
         wide = [(np.broadcast_to(a[0], (count,)), np.broadcast_to(a[1], (count,))) for a in axes]
         for (low, high), g in zip(wide, self.grid, strict=True):
@@ -97,6 +101,8 @@ class Table:
             last = np.clip(np.searchsorted(g, high - slack, "left") - 1, 0, len(g) - 2)
             firsts.append(first)
             spans.append(np.maximum(last - first, 0) + 1)
+        if branch is not None:
+            firsts, spans = branch
         many = np.prod(spans, axis=0)
         many = np.where(outside, 1, many)
         owner = np.repeat(np.arange(count), many)
@@ -105,7 +111,7 @@ class Table:
         if len(owner) > count:
             starts = np.cumsum(many) - many
             low, high = np.minimum.reduceat(low, starts), np.maximum.reduceat(high, starts)
-        return (np.where(outside, np.nan, low), np.where(outside, np.nan, high)), many > 1
+        return (np.where(outside, np.nan, low), np.where(outside, np.nan, high)), (firsts, spans)
 
     def _cells(
         self, wide: list[Pair], firsts: list[Any], spans: list[Any], orders: tuple[int, ...], owner: Any, rank: Any

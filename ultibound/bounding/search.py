@@ -21,6 +21,7 @@ from .intervals import Floats
 
 BATCH = 4096
 SHARE = 0.6  # of the gap is for the search; the rest is for the checker's own way of evaluating
+NUDGE = 2**36  # a point at the end of a cell moves inside by this share of its box
 DIRECT, CENTRED, MONOTONE = "d", "c", "m"
 Point = dict[str, Fraction]
 
@@ -162,11 +163,13 @@ def _examine(runner: Runner, boxes: _Boxes, part: Any, best: tuple[_Best, _Best]
     choice = np.concatenate([up, -up])  # upper faces, then lower faces
     low2, high2 = np.tile(low, (2, 1)), np.tile(high, (2, 1))
     f_low, f_high = np.where(choice == 1, high2, low2), np.where(choice == -1, low2, high2)
-    face = runner(f_low, f_high)
+    # a derivative jumps at grid lines: faces and centres keep the branch of their box
+    rows = np.tile(np.arange(n), 3)
+    face = runner(f_low, f_high, branches=run.branches_of(rows[: 2 * n]) if derivative else None)
     centre = 0.5 * (f_low + f_high)
     whole = 0.5 * (low + high)
     points = np.concatenate([centre, whole])
-    at = runner(points, points, gradient=False)
+    at = runner(points, points, gradient=False, branches=run.branches_of(rows) if derivative else None)
     radius = 0.5 * (f_high - f_low)
     reach = _reach(radius, face.gradient_low, face.gradient_high)
     plain = _reach(0.5 * (high - low), g_low, g_high)
@@ -238,5 +241,7 @@ def _point(obligation: Obligation, tops: list[tuple[Ends, ...]], boxes: _Boxes, 
     point = {}
     for v, cell, side in zip(obligation.variables, box, best.choice, strict=True):
         x = ends[int(side)](cell)
+        if obligation.by and obligation.reads and not v.listed:  # strictly inside a library cell: proofs/attained.md
+            x += (cell[1] - cell[0]) * -int(side) / NUDGE
         point[v.name] = x if v.listed else min(max(x, v.inside[0]), v.inside[1])
     return point

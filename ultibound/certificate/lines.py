@@ -42,7 +42,7 @@ class Writer:
 
     def point(self, proves: str, at: Mapping[str, str], bits: int, on: int | None) -> tuple[Fraction, Fraction]:
         meaning, evaluator = self._evaluator(proves, bits, on)
-        jet = evaluator.run(place(meaning, at), False)
+        jet = evaluator.run(place(meaning, at), False, touching=True)
         low, high = evaluator.a.ends(evaluator.wanted(jet))
         return low, high
 

@@ -19,6 +19,7 @@ from .terms import Terms
 Ends = tuple[Fraction, Fraction]
 Box = list[Ends]
 Interval = Any  # a pair of whole numbers (Scaled) or of fractions (Exact)
+RATIONAL = frozenset("number variable mark neg add sub mul div power".split())
 SMOOTH = frozenset("sqrt exp log sin cos tan asin acos atan sinh cosh tanh".split())
 
 
@@ -39,13 +40,16 @@ class Evaluator:
     def __init__(
         self, terms: Terms, root: int, by: str, names: list[str], libraries: Sequence[Library], arithmetic: Scaled | Exact
     ) -> None:
-        self.all, self.root, self.by, self.names, self.a = terms.all, root, by, names, arithmetic
+        self.terms, self.all, self.root, self.by, self.names, self.a = terms, terms.all, root, by, names, arithmetic
         self.columns = {c: library for library in libraries for c in library.columns}
         self.zero, self.one = arithmetic.number(Fraction(0)), arithmetic.number(Fraction(1))
         self.nodes: dict[tuple[str, int], Interval] = {}
         self.fixed: dict[int, Jet] = {}
         self.moving: list[int] = []
         self.several = False
+        self.branch: dict[int, list[range]] = {}
+        self.touching = False
+        self.axes: dict[int, Evaluator | None] = {}
         for k in terms.below(root):
             op, args, _ = self.all[k]
             if op == "variable" or op == "mark" or any(a not in self.fixed for a in args):
@@ -53,9 +57,15 @@ class Evaluator:
             else:
                 self.fixed[k] = self.term(k, self.fixed, [], False)
 
-    def run(self, box: Box, gradient: bool) -> Jet:
-        """The root's jet over a box; `several` tells whether a reading met more than one cell."""
-        self.several = False
+    def run(self, box: Box, gradient: bool, part: bool = False, touching: bool = False) -> Jet:
+        """The root's jet over a box; `several` tells whether a reading met more than one cell.
+
+        `part` is for a part of the box run before: a derivative is then taken on the same branch, though the part may be
+        a face on a grid line. `touching` counts every closed cell that a box touches (proofs/attained.md).
+        """
+        self.several, self.touching = False, touching
+        if not (part and self.by):
+            self.branch = {}
         jets = dict(self.fixed)
         for k in self.moving:
             jets[k] = self.term(k, jets, box, gradient)
@@ -101,7 +111,7 @@ class Evaluator:
         if op == "power" and isinstance(payload, Fraction):
             return self.chain(first, "power", int(payload))
         if op == "reading":
-            return self.reading(str(payload), args, [jets[x] for x in args], box)
+            return self.reading(k, str(payload), args, [jets[x] for x in args], box)
         if op in SMOOTH:
             return self.chain(first, op, 0)
         raise Undefined(f"{op} has no rule here")
@@ -225,11 +235,12 @@ class Evaluator:
             return v, first, later
         return v, a.neg(first), None if later is None else a.neg(later)
 
-    def reading(self, column: str, args: tuple[int, ...], axes: list[Jet], box: Box) -> Jet:
+    def reading(self, k: int, column: str, args: tuple[int, ...], axes: list[Jet], box: Box) -> Jet:
         """A multilinear reading and its derivatives, by the chain rule over its axes (proofs/reading.md)."""
         library = self.columns[column]
         ends = [self.exact(x, jet, box) for x, jet in zip(args, axes, strict=True)]
-        cells = [met(grid, *e) for grid, e in zip(library.grid, ends, strict=True)]
+        cells = self.branch.get(k) or [met(g, *e, self.touching) for g, e in zip(library.grid, ends, strict=True)]
+        self.branch[k] = cells
         several = any(len(c) > 1 for c in cells)
         self.several |= several
 
@@ -255,12 +266,12 @@ class Evaluator:
         return jet
 
     def exact(self, k: int, jet: Jet, box: Box) -> Ends:
-        """Ends of an axis value: exact where a variable is read directly, so that cells keep their faces."""
-        while self.all[k][0] == "mark":
-            k = self.all[k][1][0]
-        if self.all[k][0] == "variable":
-            return box[self.names.index(str(self.all[k][2]))]
-        return self.a.ends(jet.v)
+        """Ends of an axis value: exact where it is rational, so that boxes cut at grid lines keep their cells."""
+        if k not in self.axes:
+            rational = all(self.all[x][0] in RATIONAL for x in self.terms.below(k))
+            self.axes[k] = Evaluator(self.terms, k, "", self.names, (), Exact()) if rational else None
+        axis = self.axes[k]
+        return self.a.ends(jet.v) if axis is None else axis.run(box, False).v
 
     def cell(self, library: Library, column: str, cell: tuple[int, ...], ends: list[Ends], orders: list[int]) -> Interval:
         """Hull of a reading, or of its derivatives, over the part of one cell that is met: at its vertices."""
@@ -286,11 +297,16 @@ class Evaluator:
         return min(c[0] for c in corners), max(c[1] for c in corners)
 
 
-def met(grid: tuple[Fraction, ...], low: Fraction, high: Fraction) -> range:
-    """Ranks of the cells that [low, high] needs: those with g_i < high and g_{i+1} > low (proofs/reading.md)."""
+def met(grid: tuple[Fraction, ...], low: Fraction, high: Fraction, touching: bool) -> range:
+    """Ranks of the cells that [low, high] needs: those with g_i < high and g_{i+1} > low (proofs/reading.md (3)).
+
+    `touching`: all closed cells that have a point in common with it.
+    """
     if low < grid[0] or high > grid[-1]:
         span = f"[{decimal_down(low, 6)}, {decimal_up(high, 6)}]"
         raise Undefined(f"a library axis is read over {span}, beyond its grid")
+    if touching:
+        return range(max(bisect_left(grid, low) - 1, 0), min(bisect_right(grid, high), len(grid) - 1))
     first = min(bisect_right(grid, low) - 1, len(grid) - 2)  # the last line not above low
     last = bisect_left(grid, high) - 1  # the last line below high
     return range(first, max(first, last) + 1)
@@ -300,16 +316,16 @@ def enclose(evaluator: Evaluator, box: Box, form: str) -> Interval:
     """Range over a box by one form: d direct, c centred, m monotone (proofs/forms.md)."""
     jet = evaluator.run(box, form != "d")
     low, high = evaluator.wanted(jet)
+    if form not in ("d", "c", "m"):
+        raise Undefined(f"unknown form {form!r}")
     if form == "d":
         return low, high
     if evaluator.by and evaluator.several:
-        raise Undefined("a centred or monotone form of a derivative needs every reading within one cell")
+        return low, high  # a derivative that may jump has no other form
     slopes = evaluator.slopes(jet)
     if form == "c":
         c_low, c_high = centred(evaluator, box, slopes)
         return max(low, c_low), min(high, c_high)
-    if form != "m":
-        raise Undefined(f"unknown form {form!r}")
     return max(low, face(evaluator, box, slopes, -1)[0]), min(high, face(evaluator, box, slopes, 1)[1])
 
 
@@ -317,7 +333,7 @@ def centred(evaluator: Evaluator, box: Box, slopes: dict[int, Interval]) -> Inte
     """f(c) + sum of slope times distance from the centre."""
     a = evaluator.a
     centre = [((x + y) / 2,) * 2 for x, y in box]
-    total = evaluator.wanted(evaluator.run(centre, False))
+    total = evaluator.wanted(evaluator.run(centre, False, part=True))
     for i, slope in slopes.items():
         radius = (box[i][1] - box[i][0]) / 2
         total = a.add(total, a.mul(slope, a.between(-radius, radius)))
@@ -333,7 +349,7 @@ def face(evaluator: Evaluator, box: Box, slopes: dict[int, Interval], side: int)
             reduced[i] = (high, high) if side > 0 else (low, low)
         elif slope[1] <= 0:
             reduced[i] = (low, low) if side > 0 else (high, high)
-    jet = evaluator.run(reduced, True)
+    jet = evaluator.run(reduced, True, part=True)
     low, high = evaluator.wanted(jet)
     if all(x == y for x, y in reduced) or (evaluator.by and evaluator.several):
         return low, high

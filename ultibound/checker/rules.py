@@ -96,7 +96,7 @@ class Proof:
             hull, leaves = walk(evaluator, list(product(*(v.cells for v in meaning.variables))), trees)
             self.leaves += leaves
         else:
-            hull = evaluator.wanted(evaluator.run(place(meaning, witness["at"]), False))
+            hull = evaluator.wanted(evaluator.run(place(meaning, witness["at"]), False, touching=True))
         low, high = arithmetic.ends(hull)
         if not (claimed["lower"] <= low and high <= claimed["upper"]):
             raise Rejected(f"{proves}: the range shown is wider than what is concluded")

@@ -39,6 +39,7 @@ class Obligation:
     root: int
     by: str
     variables: tuple[Variable, ...]
+    reads: bool  # whether a library is read
 
 
 @dataclass(frozen=True, slots=True)
@@ -149,7 +150,9 @@ class Obligations:
     def _of(
         self, name: str, root: int, by: str = "", ranges: Mapping[str, tuple[Ends, Ends]] | None = None
     ) -> Obligation:
-        return Obligation(name, root, by, tuple(self._variable(v, root, ranges or {}) for v in self.graph.variables(root)))
+        variables = tuple(self._variable(v, root, ranges or {}) for v in self.graph.variables(root))
+        reads = any(self.graph.gates[k].op == "reading" for k in self.graph.reached((root,)))
+        return Obligation(name, root, by, variables, reads)
 
     def _variable(self, name: str, root: int, ranges: Mapping[str, tuple[Ends, Ends]]) -> Variable:
         cells, inside, listed = (

@@ -1,0 +1,138 @@
+"""Seeded random claims: no sampled slope, step or value lies beyond a proved end, and the proofs are not loose."""
+
+from __future__ import annotations
+
+import math
+import os
+import random
+from fractions import Fraction
+from typing import Any
+
+import numpy as np
+import pytest
+from tests.conftest import ends, proved
+
+CLAIMS = 12 * (10 if os.environ.get("ULTIBOUND_LONG") else 1)
+
+
+def library(rng: random.Random, jagged: bool) -> tuple[str, list[float], list[float], np.ndarray]:
+    speeds = [-0.5, -0.1, 0.3, 0.6, 1.1]
+    periods = [0.3, 0.4, 0.55]
+    table = np.array([[round(0.1 * v + (rng.uniform(-0.05, 0.05) if jagged else 0.02 * v * T), 4) for T in periods] for v in speeds])
+    rows = ["speed,period,reach"] + [f"{v},{T},{table[i, j]:.4f}".replace("-0.0000", "0.0") for i, v in enumerate(speeds) for j, T in enumerate(periods)]
+    return "\n".join(rows) + "\n", speeds, periods, table
+
+
+def read(speeds: list[float], periods: list[float], table: np.ndarray, v: np.ndarray, T: np.ndarray) -> tuple[np.ndarray, np.ndarray]:
+    """Multilinear value and its slope by speed."""
+    i = np.clip(np.searchsorted(speeds, v, "right") - 1, 0, len(speeds) - 2)
+    j = np.clip(np.searchsorted(periods, T, "right") - 1, 0, len(periods) - 2)
+    s, p = np.array(speeds), np.array(periods)
+    a, b = (v - s[i]) / (s[i + 1] - s[i]), (T - p[j]) / (p[j + 1] - p[j])
+    low = table[i, j] + b * (table[i, j + 1] - table[i, j])
+    high = table[i + 1, j] + b * (table[i + 1, j + 1] - table[i + 1, j])
+    return low + a * (high - low), (high - low) / (s[i + 1] - s[i])
+
+
+@pytest.mark.parametrize("seed", range(CLAIMS))
+def test_library_claims(seed: int) -> None:
+    """A jagged library, its speed axis read directly or at a shifted speed, region ends on grid lines or not."""
+    rng = random.Random(seed)
+    text, speeds, periods, table = library(rng, jagged=seed % 3 != 2)
+    shift = rng.choice(["0", "0.1*d", "0.05"])
+    low, high = rng.choice([(-0.1, 0.6), (-0.3, 0.6), (-0.1, 0.5), (0.3, 0.6)])
+    gain, target = round(rng.uniform(0.2, 1.5), 3), round((low + high) / 2, 3)
+    claim = f"""
+format = 1
+[state]
+v = [{low}, {high}]
+[uncertain]
+T = {rng.choice(["[0.3, 0.4]", "[0.35, 0.5]", "[0.4, 0.55]"])}
+d = [-0.3, 0.3]
+[[library]]
+file = "g.csv"
+at = {{ speed = "v + {shift}", period = "T" }}
+[next]
+v = "0.4*v + {gain}*reach*cos(T + v) + 0.05*d*d"
+[target]
+v = {target}
+[[require]]
+that = "sensitivity(v, v)"
+[[require]]
+that = "value(next(v))"
+[effort]
+gap = 1e-3
+cells = 20000
+"""
+    c = proved(claim, data={"g.csv": text})
+    results: dict[str, Any] = c.results
+    generator = np.random.default_rng(seed)
+    size = 40000
+    T0, T1 = (float(x) for x in claim.split("T = [")[1].split("]")[0].split(","))
+    v, T, d = (generator.uniform(a, b, size) for a, b in ((low, high), (T0, T1), (-0.3, 0.3)))
+    moved = {"0": 0 * d, "0.1*d": 0.1 * d, "0.05": 0 * d + 0.05}[shift]
+    reach, slope = read(speeds, periods, table, v + moved, T)
+    derivative = 0.4 + gain * (slope * np.cos(T + v) - reach * np.sin(T + v))
+    value = 0.4 * v + gain * reach * np.cos(T + v) + 0.05 * d * d
+    whole = results["set"] is not None and results["set"]["kind"] == "region"
+    if not whole:  # the set is the ball about the target: keep the samples inside it
+        r = float(min(target - low, high - target)) - 1e-9
+        derivative, value = derivative[np.abs(v - target) <= r], value[np.abs(v - target) <= r]
+    for entry, samples in zip(results["requirements"], (derivative, value), strict=True):
+        a, b = (float(x) for x in ends(entry["value"]))
+        assert a <= samples.min() + 1e-12 and samples.max() <= b + 1e-12
+        inner = ends(entry["attained"])
+        assert b - a <= 1.02 * float(inner[1] - inner[0]) + 4e-3, "loose"
+        assert samples.max() <= b and float(inner[1]) >= samples.max() - 0.02 * (b - a)
+    k = float(ends(results["gain"])[1])
+    assert np.abs(derivative).max() <= k + 1e-12
+    taken = float(ends(results["gain"])[0])
+    assert taken >= np.abs(derivative).max() * (1 - 2e-3) - 1e-6 and taken <= k
+
+
+FUNCTIONS = ["sin({})", "cos({})", "tanh({})", "exp(0.3*{})", "atan({})", "sqrt(2 + {})", "log(3 + {})", "1/(3 + {})", "({})**2",
+             "({})**3", "sinh(0.5*{})", "cosh({})", "asin(0.3*{})", "acos(0.3*{})", "tan(0.4*{})", "(2 + {})**1.5", "(2 + {})**-2"]  # fmt: skip
+
+
+@pytest.mark.parametrize("seed", range(CLAIMS))
+def test_smooth_claims_contain_what_is_simulated(seed: int) -> None:
+    """Random maps over all smooth functions: trajectories steered against the bound never leave it."""
+    rng = random.Random(1000 + seed)
+    inner = [rng.choice(FUNCTIONS).format(rng.choice(["v", "d", "v*d", "(v - d)", "h"])) for _ in range(3)]
+    outer = rng.choice(FUNCTIONS).format(f"(0.4*{inner[0]})")
+    expression = f"0.3*v + 0.12*{outer} + 0.1*{inner[1]} + 0.05*{inner[2]} - 0.2"
+    text = f"""
+format = 1
+[state]
+v = [-1, 1]
+[uncertain]
+d = [-0.5, 0.5]
+h = {{ range = [-0.4, 0.4], held = true, change = 0.02 }}
+[next]
+v = "{expression}"
+[target]
+v = "0.2*h"
+"""
+    results = proved(text).results
+    if results["bound"] is None:
+        assert results["set"] is None or float(ends(results["gain"])[1]) >= 1
+        return
+    names = {n: getattr(np, {"asin": "arcsin", "acos": "arccos", "atan": "arctan"}.get(n, n)) for n in
+             ("sin", "cos", "tanh", "exp", "atan", "sqrt", "log", "sinh", "cosh", "asin", "acos", "tan")}  # fmt: skip
+    step = eval(f"lambda v, d, h: {expression}", names)  # a test's own text, not input
+    generator = np.random.default_rng(seed)
+    bound, size = float(ends(results["bound"])[1]), 3000
+    low, high = (-1.0, 1.0) if results["set"]["kind"] == "region" else (0.0, 0.0)
+    h = generator.uniform(-0.4, 0.4, size)
+    radius = float(Fraction(results["radius"]["lower"]))
+    v = generator.uniform(low, high, size) if low < high else 0.2 * h + radius * generator.uniform(-1, 1, size)
+    for _ in range(80):
+        choices = generator.uniform(-0.5, 0.5, (12, size))
+        choices[0], choices[1] = -0.5, 0.5
+        moves = np.clip(h + generator.choice([-0.02, 0.02], (12, size)), -0.4, 0.4)
+        after = step(v, choices, h)
+        worst = np.argmax(np.abs(after - 0.2 * moves), axis=0)
+        v, h = after[worst, np.arange(size)], moves[worst, np.arange(size)]
+        assert np.all(np.abs(v) <= 1 + 1e-12) if low < high else np.all(np.abs(v - 0.2 * h) <= radius + 1e-12)
+    assert np.abs(v - 0.2 * h).max() <= bound + 1e-9
+    assert math.isfinite(bound)
