@@ -36,7 +36,9 @@ def test_the_demo_proves_everything(tmp_path: Path) -> None:
     assert done.returncode == 0, done.stderr + done.stdout
     assert (tmp_path / "demo" / "walking.cert.json").exists()
     assert len((EXAMPLES / "gaits.csv").read_text().splitlines()) - 1 >= 40
-    again = run("check", tmp_path / "demo" / "walking.cert.json", "--all-proved", "--claim", tmp_path / "demo" / "walking.toml")
+    again = run(
+        "check", tmp_path / "demo" / "walking.cert.json", "--all-proved", "--claim", tmp_path / "demo" / "walking.toml"
+    )
     assert again.returncode == 0 and "5 proved, 0 refuted, 0 undecided" in again.stdout
 
 
@@ -128,7 +130,12 @@ def test_a_target_outside_the_region_is_an_error(tmp_path: Path) -> None:
 
 def test_a_region_too_small_is_answered_with_the_size_that_would_do(tmp_path: Path) -> None:
     claim = tmp_path / "c.toml"
-    text = BASE.replace("NEXT", "0.5*v + 20*d").replace("EXTRA", "").replace("v = 0.5", "v = 0").replace("[-1, 1]", "[-0.1, 0.1]")
+    text = (
+        BASE.replace("NEXT", "0.5*v + 20*d")
+        .replace("EXTRA", "")
+        .replace("v = 0.5", "v = 0")
+        .replace("[-1, 1]", "[-0.1, 0.1]")
+    )
     claim.write_text(text)
     done = run("prove", claim, "--json")
     assert done.returncode == 1
@@ -180,8 +187,14 @@ def test_ctrl_c_keeps_what_is_proved(tmp_path: Path) -> None:
     claim = tmp_path / "c.toml"
     hard = " + ".join(f"0.01*sin({7 * k + 3}*v*a{k}*b)*cos({5 * k + 1}*a{k} + v)" for k in range(4))
     names = "\n".join(f"a{k} = [0, 3]" for k in range(4)) + "\nb = [0, 3]"
-    claim.write_text(BASE.replace("NEXT", hard).replace("EXTRA", "[effort]\ngap = 1e-9\ncells = 100000000").replace("d = [-0.01, 0.01]", names))
-    process = subprocess.Popen([*COMMAND, "prove", str(claim)], stdout=subprocess.PIPE, stderr=subprocess.PIPE, text=True)
+    claim.write_text(
+        BASE.replace("NEXT", hard)
+        .replace("EXTRA", "[effort]\ngap = 1e-9\ncells = 100000000")
+        .replace("d = [-0.01, 0.01]", names)
+    )
+    process = subprocess.Popen(
+        [*COMMAND, "prove", str(claim)], stdout=subprocess.PIPE, stderr=subprocess.PIPE, text=True
+    )
     time.sleep(4)
     assert process.poll() is None, process.communicate()
     process.send_signal(signal.SIGINT)

@@ -10,6 +10,7 @@ from typing import Any
 
 import numpy as np
 import pytest
+
 from tests.conftest import ends, proved
 
 CLAIMS = 12 * (10 if os.environ.get("ULTIBOUND_LONG") else 1)
@@ -18,12 +19,20 @@ CLAIMS = 12 * (10 if os.environ.get("ULTIBOUND_LONG") else 1)
 def library(rng: random.Random, jagged: bool) -> tuple[str, list[float], list[float], np.ndarray]:
     speeds = [-0.5, -0.1, 0.3, 0.6, 1.1]
     periods = [0.3, 0.4, 0.55]
-    table = np.array([[round(0.1 * v + (rng.uniform(-0.05, 0.05) if jagged else 0.02 * v * T), 4) for T in periods] for v in speeds])
-    rows = ["speed,period,reach"] + [f"{v},{T},{table[i, j]:.4f}".replace("-0.0000", "0.0") for i, v in enumerate(speeds) for j, T in enumerate(periods)]
+    table = np.array(
+        [[round(0.1 * v + (rng.uniform(-0.05, 0.05) if jagged else 0.02 * v * T), 4) for T in periods] for v in speeds]
+    )
+    rows = ["speed,period,reach"] + [
+        f"{v},{T},{table[i, j]:.4f}".replace("-0.0000", "0.0")
+        for i, v in enumerate(speeds)
+        for j, T in enumerate(periods)
+    ]
     return "\n".join(rows) + "\n", speeds, periods, table
 
 
-def read(speeds: list[float], periods: list[float], table: np.ndarray, v: np.ndarray, T: np.ndarray) -> tuple[np.ndarray, np.ndarray]:
+def read(
+    speeds: list[float], periods: list[float], table: np.ndarray, v: np.ndarray, T: np.ndarray
+) -> tuple[np.ndarray, np.ndarray]:
     """Multilinear value and its slope by speed."""
     i = np.clip(np.searchsorted(speeds, v, "right") - 1, 0, len(speeds) - 2)
     j = np.clip(np.searchsorted(periods, T, "right") - 1, 0, len(periods) - 2)

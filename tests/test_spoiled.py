@@ -14,8 +14,8 @@ from pathlib import Path
 from typing import Any
 
 import pytest
-from tests.conftest import proved
 
+from tests.conftest import proved
 from ultibound.checker import check
 from ultibound.checker.document import canonical, digest
 
@@ -116,9 +116,13 @@ def moved(text: str, more: int) -> str:
 
 def test_every_number_that_claims_more_is_rejected(entries: dict[str, Any]) -> None:
     count = 0
-    for path, text in list(quantities(entries["results"], ("results",))) + list(quantities(entries["proof"], ("proof",))):
+    for path, text in list(quantities(entries["results"], ("results",))) + list(
+        quantities(entries["proof"], ("proof",))
+    ):
         end, attained = path[-1], "attained" in path
-        shrunk = {"lower": 1, "upper": -1, "gain": -1, "residual": -1, "bound": -1, "radius": 1}[end] * (-1 if attained else 1)
+        shrunk = {"lower": 1, "upper": -1, "gain": -1, "residual": -1, "bound": -1, "radius": 1}[end] * (
+            -1 if attained else 1
+        )
         change = moved(text, shrunk)
 
         def spoil(e: dict[str, Any], path: tuple[Any, ...] = path, change: str = change) -> None:

@@ -92,11 +92,17 @@ class Attempt:
         target = self.enclose(o.target(), None, points=True)
         region, inner = o.region()
         if target is None:
-            raise ClaimError.of(self.claim.place, f"target.{s}", "no finite range of the target can be shown; state it in a simpler form")
+            raise ClaimError.of(
+                self.claim.place,
+                f"target.{s}",
+                "no finite range of the target can be shown; state it in a simpler form",
+            )
         self._target_inside(target, region)
         radius = min(target.lower - inner[0], inner[1] - target.upper)
         if radius < 0:
-            raise ClaimError.of(self.claim.place, f"target.{s}", "cannot be shown to lie inside the region; widen the region a little")
+            raise ClaimError.of(
+                self.claim.place, f"target.{s}", "cannot be shown to lie inside the region; widen the region a little"
+            )
         ball = w.theorem("largest-ball", "ball", [target.line], {"radius": downward(radius)})
         radius = w.proof.lines[ball].concludes["radius"]
         domain, on = self._certified(target, Domain("ball", radius, (target.lower, target.upper)), ball)
@@ -208,7 +214,12 @@ class Attempt:
             return None
 
     def _write_points(
-        self, name: str, taken: list[tuple[dict[str, str], tuple[Fraction, Fraction]]], magnitude: bool, bits: int, on: int | None
+        self,
+        name: str,
+        taken: list[tuple[dict[str, str], tuple[Fraction, Fraction]]],
+        magnitude: bool,
+        bits: int,
+        on: int | None,
     ) -> None:
         """The points that say most: the one of largest magnitude, or those of the largest and smallest value."""
         if not taken:
@@ -223,9 +234,7 @@ class Attempt:
     def _target_inside(self, target: Proved, region: tuple[Fraction, Fraction]) -> None:
         s = self.obligations.state
         for n, line in self.writer.proof.lines.items():
-            if line.rule == "point" and (
-                line.concludes["lower"] > region[1] or line.concludes["upper"] < region[0]
-            ):
+            if line.rule == "point" and (line.concludes["lower"] > region[1] or line.concludes["upper"] < region[0]):
                 at = self.writer.raw[n - 1]["witness"]["at"]
                 where = ", ".join(f"{k} = {float(Fraction(v)):.6g}" for k, v in at.items() if not v.startswith("#"))
                 value = float(line.concludes["lower"])
@@ -252,7 +261,15 @@ class Attempt:
             if self.interrupted:
                 parts.append("interrupted")
             pursue = self._open(results, outcome.value, r.kind)
-            if not results.settled and r.kind in ("settles", "bound", "radius", "value", "sensitivity", "gain", "residual"):
+            if not results.settled and r.kind in (
+                "settles",
+                "bound",
+                "radius",
+                "value",
+                "sensitivity",
+                "gain",
+                "residual",
+            ):
                 parts.append("no set that is mapped into itself was found" + self._size_that_would_do(results))
             elif r.kind == "settles":
                 parts.append("the bound is not below the radius of the set" + self._size_that_would_do(results))
@@ -287,7 +304,9 @@ class Attempt:
         return f"; a region of [{low:.4g}, {high:.4g}] would do (an estimate, not proved)"
 
 
-def _close(ends: tuple[Fraction, Fraction], taken: list[tuple[Fraction, Fraction]], magnitude: bool, gap: Fraction) -> bool:
+def _close(
+    ends: tuple[Fraction, Fraction], taken: list[tuple[Fraction, Fraction]], magnitude: bool, gap: Fraction
+) -> bool:
     """Whether the measured ends are within the gap of values surely taken."""
     if not taken:
         return False
@@ -297,6 +316,7 @@ def _close(ends: tuple[Fraction, Fraction], taken: list[tuple[Fraction, Fraction
         most = max(high, -low, Fraction(0))
         return max(abs(ends[0]), abs(ends[1])) - most <= max(gap * most, floor)
     return ends[1] - high <= max(gap * abs(high), floor) and low - ends[0] <= max(gap * abs(low), floor)
+
 
 def _extra(found: Found) -> int:
     """More fractional bits where the values are small, so that their last digits are kept."""

@@ -5,6 +5,7 @@ from __future__ import annotations
 from fractions import Fraction
 
 import pytest
+
 from tests.conftest import assert_encloses, ends, proved
 
 PENDULUM = """
@@ -212,7 +213,9 @@ d = ["-12/1000", "12/1000"]
 e = "7/10*e + d"
 [target]
 e = 0
-""" + require("bound <= 0.04", "bound(e) <= 1/25", "bound < 0.04", "gain <= 0.7", "residual <= 0.012", "radius(e) >= 0.5")
+""" + require(
+        "bound <= 0.04", "bound(e) <= 1/25", "bound < 0.04", "gain <= 0.7", "residual <= 0.012", "radius(e) >= 0.5"
+    )
     c = proved(text)
     assert ends(c.results["bound"]) == (Fraction(1, 25), Fraction(1, 25))
     assert [r["verdict"] for r in c.results["requirements"]] == ["proved"] * 2 + ["undecided"] + ["proved"] * 3
@@ -251,7 +254,11 @@ def test_interpolation_error_of_quadratics_is_sharp(gap: str) -> None:
     low, high = ends(c.results["requirements"][0]["value"])
     assert Fraction(1, 400) <= high <= Fraction(1, 400) * (1 + Fraction(gap))
     assert -Fraction("1e-9") <= low <= 0
-    rows = [(x, y, str(Fraction(x) ** 2 + Fraction(y) ** 2 + Fraction(x) * Fraction(y))) for x in ("0", "0.2") for y in ("0", "0.3")]
+    rows = [
+        (x, y, str(Fraction(x) ** 2 + Fraction(y) ** 2 + Fraction(x) * Fraction(y)))
+        for x in ("0", "0.2")
+        for y in ("0", "0.3")
+    ]
     rows = [(x, y, f"{float(Fraction(z)):.2f}") for x, y, z in rows]
     text = residual("g - (x**2 + y**2 + x*y)", 'a = "x", b = "y"', "x = [0, 0.2]\ny = [0, 0.3]", gap)
     c = proved(text, data={"table.csv": csv("a,b", "g", rows)})

@@ -85,14 +85,18 @@ def main() -> None:
     print(f"whole prove / Monte Carlo: {whole / sampling:.1f}  (aim <= 10)")
     data = certificate.to_bytes()
     checking, verdict = timed(lambda: check(data))
-    print(f"check / search: {checking / seconds:.2f};  {1e6 * checking / verdict.leaves:.0f} microseconds a leaf, {verdict.leaves} leaves")
+    print(
+        f"check / search: {checking / seconds:.2f};  {1e6 * checking / verdict.leaves:.0f} microseconds a leaf, {verdict.leaves} leaves"
+    )
     with tempfile.TemporaryDirectory() as home:
         path = Path(home) / "c.json"
         path.write_bytes(data)
         script = Path(sys.executable).with_name("ultibound")
         bare, _ = timed(lambda: subprocess.run([sys.executable, "-c", ""], check=True))
         cold, _ = timed(lambda: subprocess.run([str(script), "check", str(path)], check=True, capture_output=True))
-    print(f"cold `ultibound check` over a bare interpreter: +{cold - bare:.3f} s, of which {checking:.3f} s is checking  (aim <= +0.15 s)")
+    print(
+        f"cold `ultibound check` over a bare interpreter: +{cold - bare:.3f} s, of which {checking:.3f} s is checking  (aim <= +0.15 s)"
+    )
     sizes = []
     for speeds, periods in ((11, 11), (41, 26), (101, 101)):
         text, files = library(speeds, periods)

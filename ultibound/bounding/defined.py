@@ -7,11 +7,11 @@ from fractions import Fraction
 
 import numpy as np
 
-from .evaluate import Runner, to_float
-from .search import Effort, Point, search
 from ..claim.model import Claim
 from ..claim.obligations import Obligation, Obligations
 from ..stepmap.symbolic import compiled
+from .evaluate import Runner, to_float
+from .search import Effort, Point, search
 
 CELLS = 4000
 SECONDS = 20.0

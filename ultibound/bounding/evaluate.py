@@ -27,7 +27,9 @@ class Run:
 
     def branches_of(self, rows: Any) -> dict[int, Branch]:
         """Cells met by the boxes of the given rows, for evaluating parts of them on the same branch."""
-        return {k: ([f[rows] for f in firsts], [s[rows] for s in spans]) for k, (firsts, spans) in self.branches.items()}
+        return {
+            k: ([f[rows] for f in firsts], [s[rows] for s in spans]) for k, (firsts, spans) in self.branches.items()
+        }
 
 
 class Runner:
@@ -81,10 +83,10 @@ class Runner:
                 k = self.variables.index(step.name)
                 return low[:, k], high[:, k]
             case "number":
-                x = np.float64(to_float(step.value or Fraction(0)))
+                x = np.asarray(to_float(step.value or Fraction(0)))
                 return x, x
             case "pi":
-                return np.float64(np.pi), np.float64(np.pi)
+                return np.asarray(np.pi), np.asarray(np.pi)
             case "add":
                 return args[0][0] + args[1][0], args[0][1] + args[1][1]
             case "sub":

@@ -123,7 +123,10 @@ class Table:
             index.append(cell)
             widths.append(g[cell + 1] - g[cell])
             ends.append(
-                (np.clip((low[owner] - g[cell]) / widths[-1], 0, 1), np.clip((high[owner] - g[cell]) / widths[-1], 0, 1))
+                (
+                    np.clip((low[owner] - g[cell]) / widths[-1], 0, 1),
+                    np.clip((high[owner] - g[cell]) / widths[-1], 0, 1),
+                )
             )
         corners = [
             self.nodes[tuple(i + b for i, b in zip(index, bits, strict=True))]

@@ -92,8 +92,8 @@ def search(runner: Runner, obligation: Obligation, magnitude: bool, effort: Effo
     shape = (len(tops), len(obligation.variables))
     low = np.array([[to_float(c[0]) for c in top] for top in tops]).reshape(shape)
     high = np.array([[to_float(c[1]) for c in top] for top in tops]).reshape(shape)
-    boxes = _Boxes(*(np.zeros((0, shape[1])) for _ in range(2)), *(np.zeros(0, int) for _ in range(2)),
-                   np.zeros(0), np.zeros(0), np.zeros((0, 4)))  # fmt: skip
+    none, ends, ranks = np.zeros(0), np.zeros((0, shape[1])), np.zeros(0, int)
+    boxes = _Boxes(ends, ends, ranks, ranks, none, none, np.zeros((0, 4)))
     boxes.grow(low, high)
     widths = np.maximum(high.max(axis=0, initial=-np.inf) - low.min(axis=0, initial=np.inf), 1e-300)
     best = (_Best(1), _Best(-1))

@@ -19,7 +19,9 @@ DIGITS = 25
 SHORT = 40
 RATIONAL_CELLS = 64
 RATIONAL_TERMS = 400
-IRRATIONAL = frozenset("pi exp log sin cos tan asin acos atan sinh cosh tanh sqrt".split())
+IRRATIONAL = frozenset(
+    ["pi", "exp", "log", "sin", "cos", "tan", "asin", "acos", "atan", "sinh", "cosh", "tanh", "sqrt"]
+)
 
 
 class Writer:
@@ -63,8 +65,10 @@ class Writer:
         cells = 1
         for v in meaning.variables:
             cells *= len(v.cells)
-        return cells <= RATIONAL_CELLS and len(below) <= RATIONAL_TERMS and not any(
-            terms.all[k][0] in IRRATIONAL for k in below
+        return (
+            cells <= RATIONAL_CELLS
+            and len(below) <= RATIONAL_TERMS
+            and not any(terms.all[k][0] in IRRATIONAL for k in below)
         )
 
     def enclosed(
@@ -72,15 +76,14 @@ class Writer:
     ) -> int:
         """Appends a range or point line whose ends were measured; returns its number."""
         low, high = _down(ends[0]), _up(ends[1])
-        line = {
-            "rule": rule, "proves": proves, "uses": [] if on is None else [on], "witness": witness,
-            "concludes": {"lower": low[0], "upper": high[0]},
-        }  # fmt: skip
+        uses = [] if on is None else [on]
+        concludes = {"lower": low[0], "upper": high[0]}
+        line = {"rule": rule, "proves": proves, "uses": uses, "witness": witness, "concludes": concludes}
         meaning = self.derivation.meaning(proves, self.domain(on))
         self.raw.append(line)
         number = len(self.raw)
         self.proof.lines[number] = Line(
-            rule, proves, tuple(line["uses"]), {"lower": low[1], "upper": high[1]}, self.domain(on), meaning.on_set
+            rule, proves, tuple(uses), {"lower": low[1], "upper": high[1]}, self.domain(on), meaning.on_set
         )
         return number
 

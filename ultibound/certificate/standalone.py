@@ -2,7 +2,6 @@
 
 from __future__ import annotations
 
-import os
 import tempfile
 import zipapp
 from importlib import resources
@@ -11,7 +10,7 @@ from pathlib import Path
 MAIN = "import sys\nfrom checker.command import main\nsys.exit(main())\n"
 
 
-def build(target: str | os.PathLike[str]) -> None:
+def build(target: str | Path) -> None:
     """Writes the checker's folder as an executable archive: `python3 -I -S check_certificate.pyz CERT`."""
     with tempfile.TemporaryDirectory() as home:
         folder = Path(home) / "checker"

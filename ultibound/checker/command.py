@@ -69,7 +69,7 @@ def about(verdict: Verdict, path: str) -> Verdict:
     for name, text in pairs:
         mine, theirs = contents(name), text.encode()
         if mine != theirs:
-            both = zip(mine.splitlines() + [b""], theirs.splitlines() + [b""], strict=False)
+            both = zip([*mine.splitlines(), b""], [*theirs.splitlines(), b""], strict=False)
             number = next((n for n, (a, b) in enumerate(both, 1) if a != b), 1)
             return Verdict("invalid", "claim", f"{name} line {number} differs from the certificate")
     return verdict

@@ -53,7 +53,7 @@ class Derivation:
             raise Unprovable("only closed-form claims of one state and one stance can be checked")
         if statement.horizon != 1 or statement.shrink or statement.route not in ("best", "slope"):
             raise Unprovable("only the slope route over one step can be checked")
-        if any(constant(w, statement.values) != (1, 1) for w in statement.weights.values()):
+        if any(set(constant(w, statement.values)) != {Fraction(1)} for w in statement.weights.values()):
             raise Unprovable("only the weight 1 can be checked for a single state")
         self.statement, self.stance, self.terms = statement, stance, Terms()
         (self.state,) = stance.states

@@ -6,21 +6,40 @@ import re
 from collections.abc import Mapping
 from dataclasses import dataclass
 from fractions import Fraction
+from itertools import pairwise
 from math import isqrt
 
 from .numerals import spelled
 from .reals import Scaled, Undefined
 
 LONGEST, DEEPEST, BITS, FOLDED = 10_000, 64, 160, 2**17
-UNARY = frozenset("sqrt exp log sin cos tan asin acos atan sinh cosh tanh abs".split())
+UNARY = frozenset(["sqrt", "exp", "log", "sin", "cos", "tan", "asin", "acos", "atan", "sinh", "cosh", "tanh", "abs"])
 ARGUMENTS = {**dict.fromkeys(UNARY, (1, 1)), "min": (2, 9999), "max": (2, 9999), "clip": (3, 3), "bezier": (2, 9999)}
 FUNCTIONS = frozenset({*ARGUMENTS, "dt", "target"})
 RESERVED = FUNCTIONS | frozenset(
-    "t pi settles gain residual bound sharp_bound radius push steps sensitivity value always throughout next during".split()
+    [
+        "t",
+        "pi",
+        "settles",
+        "gain",
+        "residual",
+        "bound",
+        "sharp_bound",
+        "radius",
+        "push",
+        "steps",
+        "sensitivity",
+        "value",
+        "always",
+        "throughout",
+        "next",
+        "during",
+    ]
 )
 NAME = re.compile(r"[A-Za-z][A-Za-z0-9_]{0,39}", re.ASCII)
 TOKEN = re.compile(
-    r"[ \t\r\n]+|(?P<number>[0-9][0-9A-Za-z_.]*(?:(?<=e)-[0-9]+)?)|(?P<name>[A-Za-z_][A-Za-z0-9_]*)|(?P<mark>\*\*|<=|>=|[-+*/(),<>])",
+    r"[ \t\r\n]+|(?P<number>[0-9][0-9A-Za-z_.]*(?:(?<=e)-[0-9]+)?)|(?P<name>[A-Za-z_][A-Za-z0-9_]*)"
+    r"|(?P<mark>\*\*|<=|>=|[-+*/(),<>])",
     re.ASCII,
 )
 Ends = tuple[Fraction, Fraction]
@@ -201,7 +220,9 @@ def checked(nodes: list[Node]) -> None:
     for n in nodes:
         operands = [known[a] for a in n.args]
         given = [q for q in operands if q is not None]
-        known.append(n.value if n.op == "number" else exact(n, given) if n.args and len(given) == len(operands) else None)
+        known.append(
+            n.value if n.op == "number" else exact(n, given) if n.args and len(given) == len(operands) else None
+        )
 
 
 def exact(n: Node, given: list[Fraction]) -> Fraction | None:
@@ -298,7 +319,7 @@ def evaluated(n: Node, args: list[Ends], a: Scaled) -> Ends:
         if n.op == "bezier":
             points = x[1:]
             while len(points) > 1:
-                points = [a.add(p, a.mul(x[0], a.sub(q, p))) for p, q in zip(points, points[1:], strict=False)]
+                points = [a.add(p, a.mul(x[0], a.sub(q, p))) for p, q in pairwise(points)]
             return a.ends(points[0])
         operation = {"add": a.add, "sub": a.sub, "mul": a.mul, "div": a.div}.get(n.op) or getattr(a, n.op)
         return a.ends(operation(*x))

@@ -13,14 +13,15 @@ from typing import Any
 
 from .library import Library
 from .numerals import decimal_down, decimal_up
-from .reals import Exact, Scaled, Undefined
+from .reals import Exact, Undefined
 from .terms import Terms
 
 Ends = tuple[Fraction, Fraction]
 Box = list[Ends]
 Interval = Any  # a pair of whole numbers (Scaled) or of fractions (Exact)
-RATIONAL = frozenset("number variable mark neg add sub mul div power".split())
-SMOOTH = frozenset("sqrt exp log sin cos tan asin acos atan sinh cosh tanh".split())
+Arithmetic = Any  # Scaled or Exact
+RATIONAL = frozenset(["number", "variable", "mark", "neg", "add", "sub", "mul", "div", "power"])
+SMOOTH = frozenset(["sqrt", "exp", "log", "sin", "cos", "tan", "asin", "acos", "atan", "sinh", "cosh", "tanh"])
 
 
 class Jet:
@@ -38,7 +39,7 @@ class Evaluator:
     """A term, or its derivative by a marked name, over boxes of named variables."""
 
     def __init__(
-        self, terms: Terms, root: int, by: str, names: list[str], libraries: Sequence[Library], arithmetic: Scaled | Exact
+        self, terms: Terms, root: int, by: str, names: list[str], libraries: Sequence[Library], arithmetic: Arithmetic
     ) -> None:
         self.terms, self.all, self.root, self.by, self.names, self.a = terms, terms.all, root, by, names, arithmetic
         self.columns = {c: library for library in libraries for c in library.columns}
@@ -60,8 +61,8 @@ class Evaluator:
     def run(self, box: Box, gradient: bool, part: bool = False, touching: bool = False) -> Jet:
         """The root's jet over a box; `several` tells whether a reading met more than one cell.
 
-        `part` is for a part of the box run before: a derivative is then taken on the same branch, though the part may be
-        a face on a grid line. `touching` counts every closed cell that a box touches (proofs/attained.md).
+        `part` is for a part of the box run before: a derivative is then taken on the same branch, though the part
+        may be a face on a grid line. `touching` counts every closed cell that a box touches (proofs/attained.md).
         """
         self.several, self.touching = False, touching
         if not (part and self.by):
@@ -153,9 +154,7 @@ class Evaluator:
         for i in x.g | y.g:
             jet.g[i] = plus(prod(x.g.get(i), y.v), prod(x.v, y.g.get(i)))
         for i in x.g | y.g if self.by else ():
-            second = plus(
-                prod(x.dg.get(i), y.v), prod(x.d, y.g.get(i)), prod(x.g.get(i), y.d), prod(x.v, y.dg.get(i))
-            )
+            second = plus(prod(x.dg.get(i), y.v), prod(x.d, y.g.get(i)), prod(x.g.get(i), y.d), prod(x.v, y.dg.get(i)))
             if second is not None:
                 jet.dg[i] = second
         return jet
@@ -174,9 +173,7 @@ class Evaluator:
         for i in x.g | y.g:
             jet.g[i] = part(x.g.get(i), prod(q, y.g.get(i)))
             if self.by:
-                second = part(
-                    x.dg.get(i), prod(jet.g[i], y.d), prod(q, y.dg.get(i)), prod(jet.d, y.g.get(i))
-                )
+                second = part(x.dg.get(i), prod(jet.g[i], y.d), prod(q, y.dg.get(i)), prod(jet.d, y.g.get(i)))
                 if second is not None:
                     jet.dg[i] = second
         return jet
@@ -271,16 +268,19 @@ class Evaluator:
             rational = all(self.all[x][0] in RATIONAL for x in self.terms.below(k))
             self.axes[k] = Evaluator(self.terms, k, "", self.names, (), Exact()) if rational else None
         axis = self.axes[k]
-        return self.a.ends(jet.v) if axis is None else axis.run(box, False).v
+        low, high = self.a.ends(jet.v) if axis is None else axis.run(box, False).v
+        return low, high
 
-    def cell(self, library: Library, column: str, cell: tuple[int, ...], ends: list[Ends], orders: list[int]) -> Interval:
+    def cell(
+        self, library: Library, column: str, cell: tuple[int, ...], ends: list[Ends], orders: list[int]
+    ) -> Interval:
         """Hull of a reading, or of its derivatives, over the part of one cell that is met: at its vertices."""
         a, grid = self.a, library.grid
         corners = []
         for bits in product((0, 1), repeat=len(cell)):
             flat = 0
-            for axis, i, b in zip(grid, cell, bits, strict=True):
-                flat = flat * len(axis) + i + b
+            for lines, i, b in zip(grid, cell, bits, strict=True):
+                flat = flat * len(lines) + i + b
             if (column, flat) not in self.nodes:
                 self.nodes[column, flat] = a.number(library.columns[column][flat])
             corners.append(self.nodes[column, flat])

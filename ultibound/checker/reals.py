@@ -193,7 +193,7 @@ class Scaled:
     def _exp_at(self, x: int, p: int) -> tuple[int, int]:
         """(y, n) with exp(x / 2**p) = y * 2**n / 2**p, |error of y| <= 2**10 + 2 |n| units of y.
 
-        x = n log 2 + r; the series of r / 2**6 with at most 40 + p terms, then six squarings (each doubles the relative error).
+        x = n log 2 + r; the series of r / 2**6, then six squarings (each doubles the relative error).
         """
         ln2 = self._ln2_at(p)
         n = (2 * x + ln2) // (2 * ln2)

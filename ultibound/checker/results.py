@@ -7,7 +7,7 @@ from fractions import Fraction
 from typing import Any
 
 from .grammar import constant
-from .rules import Line, Proof, Rejected, magnitude, quantity
+from .rules import Line, Proof, Rejected, quantity
 
 DIGITS = 20
 REMARK = 1000
@@ -176,7 +176,12 @@ def hold(results: Results, claimed: Any) -> None:
     """Raises Rejected where `results` of a certificate says more than, or other than, what was derived."""
     s = results.state
     settled, bound, radius = results.settled, results.bound, results.radius if results.settled else None
-    keys(claimed, "results", "set route gain residual bound sharp_bound radius states routes metric sensitivities gain_intervals requirements")
+    keys(
+        claimed,
+        "results",
+        "set route gain residual bound sharp_bound radius states routes metric sensitivities gain_intervals "
+        "requirements",
+    )
     if claimed["set"] is not None or settled:
         keys(claimed["set"], "results.set", "kind centre radius")
         same(claimed["set"]["kind"], results.kind, "results.set.kind")
@@ -219,7 +224,9 @@ def requirement(results: Results, number: int, entry: Any, outcome: Outcome) -> 
     if ranged:
         span(entry["attained"], outcome.attained, f"{at}.attained", within=True)
     remark = entry["limited_by"]
-    if remark is not None and (not isinstance(remark, str) or not remark or len(remark) > REMARK or not remark.isprintable()):
+    if remark is not None and (
+        not isinstance(remark, str) or not remark or len(remark) > REMARK or not remark.isprintable()
+    ):
         raise Rejected(f"{at}.limited_by: null or a printable remark")
     if remark is None and (entry["verdict"] == "undecided" or results.derivation.leaves_out(r)):
         raise Rejected(f"{at}.limited_by: must say what limits this")

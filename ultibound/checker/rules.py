@@ -70,7 +70,13 @@ class Proof:
         self.lines[number] = line
 
     def enclosed(
-        self, rule: str, proves: str, uses: tuple[int, ...], used: list[Line], witness: dict[str, Any], claimed: dict[str, Fraction]
+        self,
+        rule: str,
+        proves: str,
+        uses: tuple[int, ...],
+        used: list[Line],
+        witness: dict[str, Any],
+        claimed: dict[str, Fraction],
     ) -> Line:
         """Rules range and point: this checker's own enclosure must lie within what is concluded."""
         domain = None
@@ -112,7 +118,9 @@ class Proof:
         domain = Domain(True, claimed["radius"], (target["lower"], target["upper"]))
         return Line("largest-ball", proves, uses, claimed, domain)
 
-    def invariant_region(self, proves: str, uses: tuple[int, ...], used: list[Line], claimed: dict[str, Fraction]) -> Line:
+    def invariant_region(
+        self, proves: str, uses: tuple[int, ...], used: list[Line], claimed: dict[str, Fraction]
+    ) -> Line:
         """proofs/invariant-set.md: F(X, W) in X, and every target in X."""
         s = self.derivation.state
         require(proves, "invariant", used, [("range", f"target[{s}]"), ("range", f"image[{s}]")])
@@ -121,7 +129,9 @@ class Proof:
             if not (inner[0] <= line.concludes["lower"] and line.concludes["upper"] <= inner[1]):
                 raise Rejected(f"{line.proves} is not shown to stay in the region")
         target = used[0].concludes
-        return Line("invariant-region", proves, uses, claimed, Domain(False, Fraction(0), (target["lower"], target["upper"])))
+        return Line(
+            "invariant-region", proves, uses, claimed, Domain(False, Fraction(0), (target["lower"], target["upper"]))
+        )
 
     def slope(self, proves: str, uses: tuple[int, ...], used: list[Line], claimed: dict[str, Fraction]) -> Line:
         """proofs/slope.md: k from the slopes over the set, the residual from the target's own step and movement."""
@@ -136,7 +146,9 @@ class Proof:
             raise Rejected("gain or residual: less than what the lines used show")
         return Line("slope", proves, uses, claimed, used[0].domain)
 
-    def invariant_ball(self, proves: str, uses: tuple[int, ...], used: list[Line], claimed: dict[str, Fraction]) -> Line:
+    def invariant_ball(
+        self, proves: str, uses: tuple[int, ...], used: list[Line], claimed: dict[str, Fraction]
+    ) -> Line:
         """proofs/invariant-set.md: k R + residual <= R."""
         require(proves, "invariant", used, [("largest-ball", "ball"), ("slope", "slope")])
         ball, pair = used
@@ -147,7 +159,9 @@ class Proof:
             raise Rejected("gain times radius plus residual exceeds the radius")
         return Line("invariant-ball", proves, uses, claimed, ball.domain)
 
-    def ultimate_bound(self, proves: str, uses: tuple[int, ...], used: list[Line], claimed: dict[str, Fraction]) -> Line:
+    def ultimate_bound(
+        self, proves: str, uses: tuple[int, ...], used: list[Line], claimed: dict[str, Fraction]
+    ) -> Line:
         """proofs/ultimate-bound.md: the residual over 1 - k, for k < 1 on an invariant set."""
         if len(used) != 2 or proves != "bound" or used[0].proves != "invariant" or used[1].rule != "slope":
             raise Rejected("uses: the invariant set, then gain and residual")

@@ -5,21 +5,55 @@ from __future__ import annotations
 import re
 import tomllib
 from collections.abc import Iterable, Mapping
-from dataclasses import dataclass, replace
+from dataclasses import dataclass, field, replace
 from fractions import Fraction
 from typing import Any
 
-from .grammar import DEEPEST, NAME, RESERVED, Ends, Expression, Node, Parser, Refused, checked, constant, names, parse
+from .grammar import (
+    DEEPEST,
+    NAME,
+    RESERVED,
+    Ends,
+    Expression,
+    Node,
+    Parser,
+    Refused,
+    checked,
+    constant,
+    names,
+    parse,
+)
 from .library import Library, read_library
 from .numerals import spelled
 
 LARGEST = 2**20
 TOP = frozenset(
-    "format title notes route correction shrink horizon constants gains state uncertain define next target metric effort "
-    "require dynamics library stance".split()
+    [
+        "format",
+        "title",
+        "notes",
+        "route",
+        "correction",
+        "shrink",
+        "horizon",
+        "constants",
+        "gains",
+        "state",
+        "uncertain",
+        "define",
+        "next",
+        "target",
+        "metric",
+        "effort",
+        "require",
+        "dynamics",
+        "library",
+        "stance",
+    ]
 )
 PIECE = re.compile(
-    r'"""(?:[^"\\]|\\.|"(?!""))*"{3,5}|\'\'\'(?:[^\']|\'(?!\'\'))*\'{3,5}|"(?:[^"\\\n]|\\.)*"|\'[^\'\n]*\'|\#[^\n]*|[\[\]{}]'
+    r'"""(?:[^"\\]|\\.|"(?!""))*"{3,5}|\'\'\'(?:[^\']|\'(?!\'\'))*\'{3,5}'
+    r'|"(?:[^"\\\n]|\\.)*"|\'[^\'\n]*\'|\#[^\n]*|[\[\]{}]'
     r"|[^\s\"'\#\[\]{}=,]+|.",
     re.DOTALL,
 )
@@ -83,7 +117,7 @@ class Requirement:
     during: bool = False
     relation: str | None = None
     constant: Expression | None = None
-    over: Mapping[str, Range] | Any = None
+    over: dict[str, Range] = field(default_factory=dict)
     stance: str | None = None
 
 
@@ -113,8 +147,8 @@ class Number(str):
     """A TOML number as it is spelled."""
 
 
-def read_statement(text: str, settings: dict[str, str], data: dict[str, str]) -> Statement:
-    """The statement of a claim's text, with gains replaced by `settings` and files taken from `data`. Raises Refused."""
+def read_statement(text: str, settings: Mapping[str, str], data: Mapping[str, str]) -> Statement:
+    """The statement of a claim's text, gains replaced by `settings`, files taken from `data`. Raises Refused."""
     return Reader(loaded(text), settings, data).statement()
 
 
@@ -177,7 +211,7 @@ def flag(value: Any, place: str) -> bool:
 
 
 class Reader:
-    def __init__(self, raw: dict[str, Any], settings: dict[str, str], data: dict[str, str]) -> None:
+    def __init__(self, raw: dict[str, Any], settings: Mapping[str, str], data: Mapping[str, str]) -> None:
         self.raw, self.data = table(raw, "claim", TOP), data
         self.values: dict[str, Ends] = {}
         self.declared: set[str] = set()
@@ -246,7 +280,13 @@ class Reader:
         return found
 
     def quantity(self, name: str, value: Any, place: str, state: bool, moving: bool) -> Quantity:
-        raw = {"range": value} if isinstance(value, list) else table(value, place, {"range", "unit"} if state else {"range", "values", "unit", "held", "change", "within"})
+        raw = (
+            {"range": value}
+            if isinstance(value, list)
+            else table(
+                value, place, {"range", "unit"} if state else {"range", "values", "unit", "held", "change", "within"}
+            )
+        )
         if ("range" in raw) == ("values" in raw):
             raise Refused(f"{place}: a range or values, one of them")
         held, within = flag(raw.get("held", False), place), flag(raw.get("within", False), place)
@@ -272,7 +312,10 @@ class Reader:
         title, notes = text_of(raw.get("title", ""), "title"), text_of(raw.get("notes", ""), "notes")
         constants = self.named("constants", set())
         gains = self.named("gains", set())
-        stances = {n: table(s, f"stance.{n}", ("then", "mirror", "define", "state", "next", "target", "dynamics")) for n, s in table(raw.get("stance", {}), "stance").items()}
+        stances = {
+            n: table(s, f"stance.{n}", ("then", "mirror", "define", "state", "next", "target", "dynamics"))
+            for n, s in table(raw.get("stance", {}), "stance").items()
+        }
         if "stance" in raw and not stances:
             raise Refused("stance: at least one")
         moving = "dynamics" in raw or any("dynamics" in s for s in stances.values())
@@ -293,7 +336,13 @@ class Reader:
             for column in library.columns:
                 self.declare(column, library.file)
         shared = {n: self.expression(v, f"define.{n}") for n, v in table(raw.get("define", {}), "define").items()}
-        own = {n: {d: self.expression(v, f"stance.{n}.define.{d}") for d, v in table(s.get("define", {}), f"stance.{n}.define").items()} for n, s in stances.items()}
+        own = {
+            n: {
+                d: self.expression(v, f"stance.{n}.define.{d}")
+                for d, v in table(s.get("define", {}), f"stance.{n}.define").items()
+            }
+            for n, s in stances.items()
+        }
         for name in [*shared, *sorted({d for o in own.values() for d in o})]:
             self.declare(name, "define")
         if len({frozenset(o) for o in own.values()}) > 1:
@@ -302,8 +351,18 @@ class Reader:
         for name, s in (stances or {"": {}}).items():
             if name and not NAME.fullmatch(name):
                 raise Refused(f"stance: {name[:60]!r} cannot be a name")
-            found.append(self.stance(name, s, {**states, **own_states.get(name, {})}, {**shared, **own.get(name, {})}, set(stances)))
-        if len({frozenset(s.dynamics.start) for s in found if s.dynamics} | {frozenset() for s in found if not s.dynamics}) > 1:
+            found.append(
+                self.stance(
+                    name, s, {**states, **own_states.get(name, {})}, {**shared, **own.get(name, {})}, set(stances)
+                )
+            )
+        if (
+            len(
+                {frozenset(s.dynamics.start) for s in found if s.dynamics}
+                | {frozenset() for s in found if not s.dynamics}
+            )
+            > 1
+        ):
             raise Refused("dynamics: the same continuous states in every stance")
         for name in found[0].dynamics.start if found[0].dynamics else ():
             self.declare(name, "dynamics")
@@ -323,15 +382,17 @@ class Reader:
         kind = metric.get("kind", "auto")
         if type(kind) is not str or kind not in ("auto", "box", "ellipsoid", "polytope"):
             raise Refused("metric.kind: auto, box, ellipsoid or polytope")
-        weights = {}
-        for s, w in table(metric.get("weights", {}), "metric.weights", found[0].states).items():
-            weights[s], (low, _) = self.constant(w, f"metric.weights.{s}")
+        weights: dict[str, Expression] = {}
+        for state, w in table(metric.get("weights", {}), "metric.weights", found[0].states).items():
+            weights[state], (low, _) = self.constant(w, f"metric.weights.{state}")
             if low <= 0:
-                raise Refused(f"metric.weights.{s}: above 0")
+                raise Refused(f"metric.weights.{state}: above 0")
         effort = table(raw.get("effort", {}), "effort", ("gap", "cells", "seconds"))
-        gap, seconds = (self.constant(effort.get(k, d), f"effort.{k}")[1] for k, d in (("gap", Number("1e-3")), ("seconds", 600)))
+        gap, seconds = (
+            self.constant(effort.get(k, d), f"effort.{k}")[1] for k, d in (("gap", Number("1e-3")), ("seconds", 600))
+        )
         cells = effort.get("cells", 200_000)
-        if not (0 < gap[0] and gap[1] < 1 and 0 < seconds[0]) or type(cells) is not int or cells < 1:
+        if not (gap[0] > 0 and gap[1] < 1 and seconds[0] > 0) or type(cells) is not int or cells < 1:
             raise Refused("effort: 0 < gap < 1, cells at least 1, seconds above 0")
         names_ = Scope(found[0], constants, gains, uncertain, libraries, moving, {s.name for s in found} - {""})
         listed = raw.get("require", [{"that": "settles"}])
@@ -339,8 +400,9 @@ class Reader:
             raise Refused("require: 1 to 1,000 tables")
         requirements = tuple(self.requirement(r, n, names_) for n, r in enumerate(listed, 1))
         return Statement(
-            title, notes, route, tuple(correction) if "correction" in raw else (), flag(raw.get("shrink", False), "shrink"), horizon,
-            constants, gains, uncertain, libraries, kind, weights, gap[0], cells, seconds[0], requirements, tuple(found), self.values,
+            title, notes, route, tuple(correction) if "correction" in raw else (), flag(raw.get("shrink", False), "shrink"),
+            horizon, constants, gains, uncertain, libraries, kind, weights, gap[0], cells, seconds[0], requirements,
+            tuple(found), self.values,
         )  # fmt: skip
 
     def states(self, value: Any, place: str) -> dict[str, Quantity]:
@@ -351,38 +413,65 @@ class Reader:
         found = []
         for k, item in enumerate(raw if isinstance(raw, list) else [raw], 1):
             place = f"library[{k}]"
-            file, at = text_of(table(item, place, ("file", "at")).get("file"), place), table(item.get("at"), f"{place}.at")
+            file, at = (
+                text_of(table(item, place, ("file", "at")).get("file"), place),
+                table(item.get("at"), f"{place}.at"),
+            )
             if not file or any(p in ("", ".", "..") for p in file.split("/")) or "\\" in file or not file.isprintable():
                 raise Refused(f"{place}.file: a path beside or below the claim")
             if file not in self.data:
                 raise Refused(f"{place}: {file[:60]!r} is not there")
             if not 1 <= len(at) <= 4:
                 raise Refused(f"{place}.at: one to four axes")
-            found.append(read_library(file, self.data[file], {a: self.expression(e, f"{place}.at.{a}") for a, e in at.items()}))
+            found.append(
+                read_library(file, self.data[file], {a: self.expression(e, f"{place}.at.{a}") for a, e in at.items()})
+            )
         if "library" in self.raw and not found:
             raise Refused("library: at least one")
         return tuple(found)
 
-    def each(self, key: str, stance: dict[str, Any], name: str, states: Mapping[str, Quantity]) -> dict[str, Expression]:
+    def each(
+        self, key: str, stance: dict[str, Any], name: str, states: Mapping[str, Quantity]
+    ) -> dict[str, Expression]:
         """`next` or `target` of a stance: shared entries and its own, every state once."""
         shared, own = table(self.raw.get(key, {}), key), table(stance.get(key, {}), f"stance.{name}.{key}")
         if set(shared) & set(own) or set(shared) | set(own) != set(states) or not states:
             raise Refused(f"{key}: one expression for each state, shared or in every stance")
         return {s: self.expression({**shared, **own}[s], f"{key}.{s}") for s in states}
 
-    def stance(self, name: str, raw: dict[str, Any], states: dict[str, Quantity], define: dict[str, Expression], all_: set[str]) -> Stance:
+    def stance(
+        self, name: str, raw: dict[str, Any], states: dict[str, Quantity], define: dict[str, Expression], all_: set[str]
+    ) -> Stance:
         then = raw.get("then", [])
         then = [then] if isinstance(then, str) else then
-        if name and (not isinstance(then, list) or not then or any(type(t) is not str or t not in all_ for t in then) or len(set(then)) < len(then)):
+        if name and (
+            not isinstance(then, list)
+            or not then
+            or any(type(t) is not str or t not in all_ for t in then)
+            or len(set(then)) < len(then)
+        ):
             raise Refused(f"stance.{name}.then: stances that may follow")
         mirror = raw.get("mirror", [])
-        if not isinstance(mirror, list) or any(type(m) is not str or m not in states for m in mirror) or len(set(mirror)) < len(mirror):
+        if (
+            not isinstance(mirror, list)
+            or any(type(m) is not str or m not in states for m in mirror)
+            or len(set(mirror)) < len(mirror)
+        ):
             raise Refused(f"stance.{name}.mirror: a list of states")
         if "dynamics" in self.raw and "dynamics" in raw:
             raise Refused("dynamics: shared, or in every stance")
         own = raw.get("dynamics", self.raw.get("dynamics"))
         dynamics = None if own is None else self.dynamics(own)
-        return Stance(name, tuple(then), tuple(mirror), states, define, self.each("next", raw, name, states), self.each("target", raw, name, states), dynamics)
+        return Stance(
+            name,
+            tuple(then),
+            tuple(mirror),
+            states,
+            define,
+            self.each("next", raw, name, states),
+            self.each("target", raw, name, states),
+            dynamics,
+        )
 
     def dynamics(self, value: Any) -> Dynamics:
         raw = table(value, "dynamics", ("duration", "until", "within", "start", "rate"))
@@ -397,12 +486,15 @@ class Reader:
             if constant(within.lower, self.values)[0] < 0:
                 raise Refused("dynamics.within: from 0 on")
         parts = [self.expression(raw[k], f"dynamics.{k}") if k in raw else None for k in ("duration", "until")]
-        return Dynamics(parts[0], parts[1], within, {s: self.expression(e, f"dynamics.start.{s}") for s, e in start.items()},
+        return Dynamics(parts[0], parts[1], within,
+                        {s: self.expression(e, f"dynamics.start.{s}") for s, e in start.items()},
                         {s: self.expression(e, f"dynamics.rate.{s}") for s, e in rate.items()})  # fmt: skip
 
     # names
 
-    def ordered(self, s: Stance, constants: Any, gains: Any, uncertain: dict[str, Quantity], libraries: tuple[Library, ...]) -> Stance:
+    def ordered(
+        self, s: Stance, constants: Any, gains: Any, uncertain: dict[str, Quantity], libraries: tuple[Library, ...]
+    ) -> Stance:
         """The stance with its definitions in order of dependence, every name known and allowed where it stands."""
         scope = Scope(s, constants, gains, uncertain, libraries, s.dynamics is not None, set())
         for place, e in scope.texts():
@@ -446,7 +538,9 @@ class Reader:
         over = {}
         for name, ends in table(raw.get("over", {}), f"{place}.over").items():
             declared = {*scope.stance.states, *scope.uncertain, *self.values}
-            if name not in declared and not (r.kind == "sensitivity" and (name in scope.stance.define or name in scope.columns)):
+            if name not in declared and not (
+                r.kind == "sensitivity" and (name in scope.stance.define or name in scope.columns)
+            ):
                 raise Refused(f"{place}.over: {name[:60]!r} cannot be given a range")
             over[name] = self.range(ends, f"{place}.over.{name}")
         stance = raw.get("in")
@@ -471,7 +565,16 @@ def replaced(text: str) -> Any:
 class Scope:
     """Names a stance's expressions may use."""
 
-    def __init__(self, stance: Stance, constants: Any, gains: Any, uncertain: dict[str, Quantity], libraries: tuple[Library, ...], moving: bool, stances: set[str]) -> None:
+    def __init__(
+        self,
+        stance: Stance,
+        constants: Any,
+        gains: Any,
+        uncertain: dict[str, Quantity],
+        libraries: tuple[Library, ...],
+        moving: bool,
+        stances: set[str],
+    ) -> None:
         self.stance, self.uncertain, self.moving, self.stances = stance, uncertain, moving, stances
         self.fixed = {*constants, *gains}
         self.columns = {c: library for library in libraries for c in library.columns}
@@ -482,7 +585,11 @@ class Scope:
 
     def texts(self) -> list[tuple[str, Expression]]:
         s, d = self.stance, self.stance.dynamics
-        found = [(f"{k}.{n}", e) for k, group in (("define", s.define), ("next", s.next), ("target", s.target)) for n, e in group.items()]
+        found = [
+            (f"{k}.{n}", e)
+            for k, group in (("define", s.define), ("next", s.next), ("target", s.target))
+            for n, e in group.items()
+        ]
         found += [(library.file, e) for library in self.columns.values() for e in library.at]
         if d is not None:
             found += [(f"dynamics.{k}", e) for k, e in (("duration", d.duration), ("until", d.until)) if e is not None]
@@ -549,13 +656,17 @@ class Scope:
             seen.add(name)
             below = self.uses(name)
             waiting += below
-            if not (name in self.stance.define or name in self.columns or name.startswith("target(")) or (columns and name in self.columns):
+            if not (name in self.stance.define or name in self.columns or name.startswith("target(")) or (
+                columns and name in self.columns
+            ):
                 found.add(name)
         return found
 
 
 def used(e: Expression) -> list[str]:
-    return [f"target({n.name})" if n.op == "target" else str(n.name) for n in e.nodes if n.op in ("name", "target", "time")]
+    return [
+        f"target({n.name})" if n.op == "target" else str(n.name) for n in e.nodes if n.op in ("name", "target", "time")
+    ]
 
 
 def asked(text: str, values: Mapping[str, Ends]) -> Requirement:

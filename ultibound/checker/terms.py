@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 from fractions import Fraction
+from itertools import pairwise
 from math import isqrt
 
 from .grammar import Expression
@@ -132,8 +133,7 @@ class Names:
                 points = args[1:]
                 while len(points) > 1:  # de Casteljau
                     points = tuple(
-                        put("add", (a, put("mul", (args[0], put("sub", (b, a))))))
-                        for a, b in zip(points, points[1:], strict=False)
+                        put("add", (a, put("mul", (args[0], put("sub", (b, a)))))) for a, b in pairwise(points)
                     )
                 ranks.append(points[0])
             else:

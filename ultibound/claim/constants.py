@@ -4,6 +4,7 @@ from __future__ import annotations
 
 from collections.abc import Mapping
 from fractions import Fraction
+from itertools import pairwise
 from math import isqrt
 from typing import Any
 
@@ -27,7 +28,7 @@ def constant(expression: Expression, values: Mapping[str, Ends]) -> Ends:
         elif n.op == "name":
             if n.name not in values:
                 raise Bad(f"{n.name} is not a constant or gain; only those may stand in a number")
-            done.append(values[n.name])
+            done.append(values[str(n.name)])
         elif n.op in ("time", "target", "next", "dt"):
             raise Bad(f"{n.op} cannot stand in a number")
         else:
@@ -153,7 +154,7 @@ def _ball(node: Node, x: list[Any]) -> Any:
         case "bezier":
             points = x[1:]
             while len(points) > 1:
-                points = [a + x[0] * (b - a) for a, b in zip(points, points[1:], strict=False)]
+                points = [a + x[0] * (b - a) for a, b in pairwise(points)]
             return points[0]
         case _:
             return getattr(x[0], node.op)()

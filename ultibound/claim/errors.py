@@ -20,7 +20,9 @@ class ClaimError(Exception):
 
     def __init__(self, file: str, problems: Iterable[Problem]) -> None:
         self.file, self.problems = file, tuple(problems)
-        super().__init__("\n".join(printable(": ".join(p for p in (file, x.place, x.message) if p)) for x in self.problems))
+        super().__init__(
+            "\n".join(printable(": ".join(p for p in (file, x.place, x.message) if p)) for x in self.problems)
+        )
 
     @classmethod
     def of(cls, file: str, place: str, message: str) -> ClaimError:

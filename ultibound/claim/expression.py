@@ -15,7 +15,7 @@ MAX_DIGITS = 4_000
 MAX_POWER = 64
 SMOOTH = ("sqrt", "exp", "log", "sin", "cos", "tan", "asin", "acos", "atan", "sinh", "cosh", "tanh")
 FUNCTIONS: dict[str, tuple[int, int | None]] = {
-    **{f: (1, 1) for f in SMOOTH},
+    **dict.fromkeys(SMOOTH, (1, 1)),
     "abs": (1, 1), "min": (2, None), "max": (2, None), "clip": (3, 3), "bezier": (2, None), "dt": (1, 1),
 }  # fmt: skip
 QUANTITIES = (

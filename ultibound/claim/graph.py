@@ -5,6 +5,7 @@ from __future__ import annotations
 from collections.abc import Mapping
 from dataclasses import dataclass
 from fractions import Fraction
+from itertools import pairwise
 from math import isqrt
 
 from .expression import Expression
@@ -167,10 +168,7 @@ class Scope:
         """De Casteljau's scheme, which is the Bernstein form."""
         g = self.graph
         while len(points) > 1:
-            points = [
-                g.add("add", a, g.add("mul", s, g.add("sub", b, a)))
-                for a, b in zip(points, points[1:], strict=False)
-            ]
+            points = [g.add("add", a, g.add("mul", s, g.add("sub", b, a))) for a, b in pairwise(points)]
         return points[0]
 
 

@@ -27,7 +27,9 @@ def parse_library(file: str, text: str, at: Mapping[str, Expression]) -> Library
             raise Bad(f"{file}: row 1: column {name} stands twice")
     missing = [a for a in at if a not in header]
     if missing:
-        raise Bad(f"{file}: row 1: there is no column {missing[0][:40]} for the axis; columns: {', '.join(header)[:200]}")
+        raise Bad(
+            f"{file}: row 1: there is no column {missing[0][:40]} for the axis; columns: {', '.join(header)[:200]}"
+        )
     if len(at) == len(header):
         raise Bad(f"{file}: row 1: every column is an axis; at least one must be read")
     ranks = [header.index(a) for a in at]

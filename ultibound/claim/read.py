@@ -120,7 +120,9 @@ class _Reader:
             return {}
         for key in value if allowed is not None else ():
             if key not in (allowed or ()):
-                self.problems.append(Problem(f"{place}.{key[:60]}".lstrip("."), f"unknown key{nearest(key, allowed or ())}"))
+                self.problems.append(
+                    Problem(f"{place}.{key[:60]}".lstrip("."), f"unknown key{nearest(key, allowed or ())}")
+                )
         return {k: v for k, v in value.items() if allowed is None or k in allowed}
 
     def declare(self, name: str, section: str) -> None:
@@ -178,7 +180,8 @@ class _Reader:
                 raise ClaimError(self.place, self.problems)
         title, notes = self.text_key("title"), self.text_key("notes")
         raw_stances = {
-            n: self.table(s, f"stance.{n[:60]}", STANCE_KEYS) for n, s in self.table(raw.get("stance", {}), "stance").items()
+            n: self.table(s, f"stance.{n[:60]}", STANCE_KEYS)
+            for n, s in self.table(raw.get("stance", {}), "stance").items()
         }
         if "stance" in raw and not raw_stances:
             self.problems.append(Problem("stance", "empty; state at least one stance, or none at all"))
@@ -186,7 +189,10 @@ class _Reader:
         constants, gains = self.fixed("constants"), self.fixed("gains")
         states = self.quantities(raw.get("state", {}), "state", state=True)
         uncertain = self.quantities(raw.get("uncertain", {}), "uncertain", state=False)
-        own = {n: self.quantities(s.get("state", {}), f"stance.{n}.state", True, declare=False) for n, s in raw_stances.items()}
+        own = {
+            n: self.quantities(s.get("state", {}), f"stance.{n}.state", True, declare=False)
+            for n, s in raw_stances.items()
+        }
         for name in sorted({s for o in own.values() for s in o} - set(states)):
             with self.at(f"stance.*.state.{name}"):
                 self.declare(name, "stance")
@@ -204,10 +210,14 @@ class _Reader:
                     raise Bad(f"missing in stance {absent[0]}; a name is defined once for all or in every stance")
         stances: list[Stance] = []
         for n, s in (raw_stances or {"": {}}).items():
-            stances.append(self.stance(n, s, {**states, **own.get(n, {})}, {**define, **defines.get(n, {})}, list(raw_stances)))
+            stances.append(
+                self.stance(n, s, {**states, **own.get(n, {})}, {**define, **defines.get(n, {})}, list(raw_stances))
+            )
         continuous = [frozenset(s.dynamics.start) if s.dynamics else frozenset() for s in stances]
         if len(set(continuous)) > 1:
-            self.problems.append(Problem("dynamics", "the continuous states differ between stances; give every stance the same"))
+            self.problems.append(
+                Problem("dynamics", "the continuous states differ between stances; give every stance the same")
+            )
         for name in sorted(continuous[0]):
             with self.at(f"dynamics.start.{name}"):
                 self.declare(name, "dynamics")
@@ -216,7 +226,11 @@ class _Reader:
         if not self.problems:
             stances = [self.resolved(s, [*constants, *gains], uncertain, libraries) for s in stances]
         names = Names(stances[0], [*constants, *gains], uncertain, libraries)
-        correction, route, horizon = self.correction(stances[0]), self.choice("route", ("best", "slope", "split", "sector", "curve")), raw.get("horizon", 1)
+        correction, route, horizon = (
+            self.correction(stances[0]),
+            self.choice("route", ("best", "slope", "split", "sector", "curve")),
+            raw.get("horizon", 1),
+        )
         if type(horizon) is not int or not 1 <= horizon <= 64:
             self.problems.append(Problem("horizon", f"{horizon!r:.40} found, a whole number from 1 to 64 is expected"))
         shrink = self.attempt("shrink", lambda: _flag(raw.get("shrink", False)), False)
@@ -259,9 +273,15 @@ class _Reader:
         found: dict[str, Expression] = {}
         waiting = dict(raw)
         while waiting:
-            ready = [n for n, v in waiting.items() if not set(NAME_ANYWHERE.findall(v) if type(v) is str else ()) & set(waiting)]
+            ready = [
+                n
+                for n, v in waiting.items()
+                if not set(NAME_ANYWHERE.findall(v) if type(v) is str else ()) & set(waiting)
+            ]
             if not ready:
-                self.problems.append(Problem(section, f"{', '.join(sorted(waiting))[:80]} depend on each other; break the cycle"))
+                self.problems.append(
+                    Problem(section, f"{', '.join(sorted(waiting))[:80]} depend on each other; break the cycle")
+                )
                 break
             for name in ready:
                 value = waiting.pop(name)
@@ -338,7 +358,12 @@ class _Reader:
         return tuple(found)
 
     def stance(
-        self, name: str, raw: dict[str, Any], states: dict[str, Quantity], define: dict[str, Expression], known: list[str]
+        self,
+        name: str,
+        raw: dict[str, Any],
+        states: dict[str, Quantity],
+        define: dict[str, Expression],
+        known: list[str],
     ) -> Stance:
         place = f"stance.{name[:60]}" if name else ""
         then = [raw["then"]] if isinstance(raw.get("then"), str) else raw.get("then", [])
@@ -347,7 +372,9 @@ class _Reader:
             if name and not NAME.match(name):
                 raise Bad("not a name; names start with a letter and have at most 40 letters, digits or _")
             if name and (not _distinct(then) or not then or not set(then) <= set(known)):
-                raise Bad(f"then: the stance that follows, or a list of them, is expected; stances: {', '.join(known)[:80]}")
+                raise Bad(
+                    f"then: the stance that follows, or a list of them, is expected; stances: {', '.join(known)[:80]}"
+                )
             if not _distinct(mirror) or not set(mirror) <= set(states):
                 raise Bad(f"mirror: a list of states is expected; states: {', '.join(states)[:80]}")
             if "dynamics" in raw and "dynamics" in self.raw:
@@ -356,9 +383,13 @@ class _Reader:
         dynamics = None if value is None else self.dynamics(value, f"{place}.dynamics".lstrip("."))
         step, target = (self.each(key, raw, place, states) for key in ("next", "target"))
         safe_then = tuple(then) if _distinct(then) else ()
-        return Stance(name, safe_then, tuple(mirror) if _distinct(mirror) else (), states, define, step, target, dynamics)
+        return Stance(
+            name, safe_then, tuple(mirror) if _distinct(mirror) else (), states, define, step, target, dynamics
+        )
 
-    def each(self, key: str, stance: dict[str, Any], place: str, states: Mapping[str, Quantity]) -> dict[str, Expression]:
+    def each(
+        self, key: str, stance: dict[str, Any], place: str, states: Mapping[str, Quantity]
+    ) -> dict[str, Expression]:
         shared, own = self.raw.get(key, {}), stance.get(key, {})
         found = self.expressions(shared, key)
         more = self.expressions(own, f"{place}.{key}") if own != {} else {}
@@ -376,7 +407,10 @@ class _Reader:
 
     def dynamics(self, value: Any, place: str) -> Dynamics | None:
         raw = self.table(value, place, ("duration", "until", "within", "start", "rate"))
-        start, rate = self.expressions(raw.get("start", {}), f"{place}.start"), self.expressions(raw.get("rate", {}), f"{place}.rate")
+        start, rate = (
+            self.expressions(raw.get("start", {}), f"{place}.start"),
+            self.expressions(raw.get("rate", {}), f"{place}.rate"),
+        )
         with self.at(place):
             if not raw.get("start") or set(raw.get("start", {})) != set(raw.get("rate", {})):
                 raise Bad("start and rate must name the same continuous states, at least one")
@@ -393,11 +427,17 @@ class _Reader:
             return Dynamics(duration, until, within, start, rate)
         return None
 
-    def resolved(self, s: Stance, fixed: list[str], uncertain: dict[str, Quantity], libraries: tuple[Library, ...]) -> Stance:
+    def resolved(
+        self, s: Stance, fixed: list[str], uncertain: dict[str, Quantity], libraries: tuple[Library, ...]
+    ) -> Stance:
         """The stance with its definitions in order; every name is known and may stand where it does."""
         names = Names(s, fixed, uncertain, libraries)
         prefix = f"stance.{s.name}." if s.name else ""
-        groups: list[tuple[str, Mapping[str, Expression]]] = [("define", s.define), ("next", s.next), ("target", s.target)]
+        groups: list[tuple[str, Mapping[str, Expression]]] = [
+            ("define", s.define),
+            ("next", s.next),
+            ("target", s.target),
+        ]
         early: list[tuple[str, Expression]] = [(f"target.{n}", e) for n, e in s.target.items()]
         if s.dynamics is not None:
             parts = {"duration": s.dynamics.duration, "until": s.dynamics.until}
@@ -441,7 +481,9 @@ class _Reader:
             return ()
         value = self.raw["correction"]
         if not _distinct(value) or not value or not set(value) <= set(stance.define):
-            self.problems.append(Problem("correction", f"a list of defined names is expected; defined: {', '.join(stance.define)[:80]}"))
+            self.problems.append(
+                Problem("correction", f"a list of defined names is expected; defined: {', '.join(stance.define)[:80]}")
+            )
             return ()
         return tuple(value)
 
@@ -464,7 +506,9 @@ class _Reader:
         raw = self.table(self.raw.get("effort", {}), "effort", ("gap", "cells", "seconds"))
         gap, cells, seconds = Fraction(1, 1000), raw.get("cells", 200_000), Fraction(600)
         if type(cells) is not int or cells < 1:
-            self.problems.append(Problem("effort.cells", f"{cells!r:.40} found, a whole number of at least 1 is expected"))
+            self.problems.append(
+                Problem("effort.cells", f"{cells!r:.40} found, a whole number of at least 1 is expected")
+            )
         with self.at("effort.gap"):
             low, high = self.constant(raw["gap"])[1] if "gap" in raw else (gap, gap)
             if not (low > 0 and high < 1):
@@ -480,7 +524,9 @@ class _Reader:
     def requirements(self, names: Names, stances: list[str]) -> tuple[Requirement, ...]:
         listed = self.raw.get("require", [{"that": "settles"}])
         if not isinstance(listed, list) or not 1 <= len(listed) <= 1000:
-            self.problems.append(Problem("require", "1 to 1,000 [[require]] tables are expected; leave it out for `settles`"))
+            self.problems.append(
+                Problem("require", "1 to 1,000 [[require]] tables are expected; leave it out for `settles`")
+            )
             return ()
         found = []
         for number, item in enumerate(listed, 1):

@@ -80,5 +80,9 @@ def _located(why: str, text: str) -> Problem:
     lines = text.split("\n")
     number = int(where[1])
     shown = lines[number - 1].strip()[:60] if number <= len(lines) else ""
-    rule = "a key or table stands twice" if "overwrite" in why or "twice" in why or "mutate" in why else why[: where.start()].strip()
+    rule = (
+        "a key or table stands twice"
+        if "overwrite" in why or "twice" in why or "mutate" in why
+        else why[: where.start()].strip()
+    )
     return Problem(f"line {number}", f"{rule}: {shown}")

@@ -76,9 +76,7 @@ class System:
         raise KeyError(name)
 
 
-def differentiated(
-    rule: list[tuple[Expr, Expr]], of: Expr, by: Expr, tag: str
-) -> tuple[list[tuple[Expr, Expr]], Expr]:
+def differentiated(rule: list[tuple[Expr, Expr]], of: Expr, by: Expr, tag: str) -> tuple[list[tuple[Expr, Expr]], Expr]:
     """The system extended by the derivatives by a symbol, and the expression of d(of)/d(by)."""
     slope: dict[Expr, Expr] = {by: sympy.Integer(1)}
     out: list[tuple[Expr, Expr]] = []
