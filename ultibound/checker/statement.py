@@ -400,9 +400,9 @@ class Reader:
             raise Refused("require: 1 to 1,000 tables")
         requirements = tuple(self.requirement(r, n, names_) for n, r in enumerate(listed, 1))
         return Statement(
-            title, notes, route, tuple(correction) if "correction" in raw else (), flag(raw.get("shrink", False), "shrink"),
-            horizon, constants, gains, uncertain, libraries, kind, weights, gap[0], cells, seconds[0], requirements,
-            tuple(found), self.values,
+            title, notes, route, tuple(correction) if "correction" in raw else (),
+            flag(raw.get("shrink", False), "shrink"), horizon, constants, gains, uncertain, libraries, kind, weights,
+            gap[0], cells, seconds[0], requirements, tuple(found), self.values,
         )  # fmt: skip
 
     def states(self, value: Any, place: str) -> dict[str, Quantity]:

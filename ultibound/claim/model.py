@@ -90,7 +90,7 @@ class Requirement:
 
 @dataclass(frozen=True, slots=True)
 class Claim:
-    """A whole claim. `text`, `settings` and `data` are what a certificate repeats; `values` enclose constants and gains."""
+    """A whole claim; a certificate repeats `text`, `settings`, `data`; `values` enclose constants and gains."""
 
     text: str
     settings: Mapping[str, str]

@@ -5,6 +5,7 @@ The checker derives the same list from the claim's text on its own; tests hold t
 
 from __future__ import annotations
 
+import itertools
 from collections.abc import Mapping
 from dataclasses import dataclass
 from fractions import Fraction
@@ -163,7 +164,7 @@ class Obligations:
         if not listed:
             (low, high), lines = cells[0], self._lines(name, root)
             ends = [low, *sorted(x for x in lines if low < x < high), high]
-            cells = tuple(zip(ends, ends[1:], strict=False))
+            cells = tuple(itertools.pairwise(ends))
         return Variable(name, cells, inside, listed)
 
     def _lines(self, name: str, root: int) -> set[Fraction]:
@@ -224,6 +225,8 @@ def not_yet(claim: Claim) -> str | None:
         return f"route: {claim.route} cannot be proved yet; use slope or best"
     if claim.shrink:
         return "shrink: smaller sets cannot be searched yet; remove the key, or state a smaller region"
+    if any(set(constant(w, claim.values)) != {Fraction(1)} for w in claim.weights.values()):
+        return "metric.weights: only the weight 1 can be used with a single state yet; remove the table"
     for number, r in enumerate(claim.requirements, 1):
         if r.kind not in PROVABLE:
             return f"require[{number}]: {r.kind} cannot be proved yet; provable are {', '.join(PROVABLE)}"

@@ -52,10 +52,7 @@ def _arguments(parser: Parser, r: Requirement) -> Requirement:
     if kind in ("gain", "residual"):
         raise Bad(f"{kind} takes no argument; it is of the whole state, in the metric's norm")
     parser.expect("(")
-    if kind == "value":
-        r = replace(r, expression=_part(parser))
-    else:
-        r = replace(r, state=parser.word())
+    r = replace(r, expression=_part(parser)) if kind == "value" else replace(r, state=parser.word())
     if kind == "sensitivity":
         parser.expect(",")
         r = replace(r, by=parser.word())

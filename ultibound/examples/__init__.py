@@ -1,1 +1,1 @@
-"""Example claims and data of an invented scenario: a small two-legged carrier of seedling trays in a hillside nursery."""
+"""Example claims and data of an invented scenario: a two-legged carrier of seedling trays in a hillside nursery."""

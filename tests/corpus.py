@@ -1,0 +1,358 @@
+"""Claim texts, accepted and refused, that both readers must answer alike. Scenario: a carrier of seedling trays."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass, field
+
+BASE = """format = 1
+title = "Tray carrier"
+[constants]
+g = 9.81
+[gains]
+kappa = 0.1
+[state]
+v = { range = [-0.2, 1.0], unit = "m/s" }
+[uncertain]
+T = [0.36, 0.40]
+load = { range = [0, 2], held = true, change = 0.1 }
+[define]
+w = "sqrt(g/0.62)"
+foot = "kappa*(v - target(v))"
+[next]
+v = "v/2 + foot"
+[target]
+v = 0.4
+"""
+CSV = "speed,period,reach\n0,0.3,0\n0,0.5,0\n1,0.3,0.13\n1,0.5,0.21\n"
+LIBRARY = BASE + '[[library]]\nfile = "gaits.csv"\nat = { speed = "v", period = "T" }\n'
+DYNAMICS = """format = 1
+[constants]
+g = 9.81
+[state]
+v = [0, 1]
+[uncertain]
+T = [0.3, 0.4]
+gust = { range = [-0.4, 0.4], within = true }
+[define]
+height = "0.6 + 0.01*t"
+[dynamics]
+duration = "T"
+[dynamics.start]
+x = "-0.1*v"
+xd = "0.98*v"
+[dynamics.rate]
+x = "xd"
+xd = "(g + dt(dt(height)))/height*x + gust"
+[next]
+v = "xd"
+[target]
+v = 0.5
+"""
+STANCES = """format = 1
+[state]
+vx = [0, 1]
+[uncertain]
+T = [0.3, 0.4]
+[define]
+w = "3.9"
+[next]
+vx = "vx/2"
+[target]
+vx = 0.5
+[stance.left]
+then = "right"
+mirror = ["vy"]
+define = { side = "1" }
+state = { vy = [-0.1, 0.6] }
+next = { vy = "vy/2 + side/100" }
+target = { vy = 0.12 }
+[stance.right]
+then = ["left", "right"]
+define = { side = "-1" }
+state = { vy = [-0.6, 0.1] }
+next = { vy = "vy/2 + side/100" }
+target = { vy = -0.12 }
+"""
+
+
+@dataclass(frozen=True)
+class Case:
+    name: str
+    text: str
+    accepted: bool
+    data: dict[str, str] = field(default_factory=dict)
+    settings: dict[str, str] = field(default_factory=dict)
+
+
+CASES: list[Case] = []
+
+
+def add(accepted: bool, name: str, text: str, data: dict[str, str] | None = None, **settings: str) -> None:
+    CASES.append(Case(f"{'good' if accepted else 'bad'}: {name}", text, accepted, data or {}, settings))
+
+
+def top(text: str) -> str:
+    return BASE.replace('title = "Tray carrier"\n', f'title = "Tray carrier"\n{text}\n')
+
+
+def swap(old: str, new: str, base: str = BASE) -> str:
+    if old not in base:
+        raise ValueError(old)
+    return base.replace(old, new)
+
+
+def require(that: str, more: str = "") -> str:
+    return f'{BASE}[[require]]\nthat = "{that}"\n{more}\n'
+
+
+# whole files
+add(True, "base", BASE)
+add(True, "library", LIBRARY, {"gaits.csv": CSV})
+add(True, "dynamics", DYNAMICS)
+add(True, "stances", STANCES)
+add(True, "no constants", 'format = 1\n[state]\nx = [0, 1]\n[next]\nx = "x/2"\n[target]\nx = 0.5\n')
+add(True, "numbers for expressions", "format = 1\nstate = { x = [0, 1] }\nnext = { x = 0.5 }\ntarget = { x = 1 }\n")
+add(False, "empty", "")
+add(False, "blank", " \n\n")
+add(False, "only format", "format = 1\n")
+add(False, "not TOML", "format = 1\n[state\n")
+add(False, "BOM", "\ufeff" + BASE)
+add(False, "NUL", BASE + "# \0\n")
+add(False, "escape character", BASE + "# \x1b[31m\n")
+add(False, "duplicate key", BASE.replace("g = 9.81", "g = 9.81\ng = 9.82"))
+add(False, "duplicate table", BASE + "[target]\nv = 0.4\n")
+add(False, "too large", BASE + "# " + "x" * 2**20)
+for key in ("target", "next", "state"):
+    start = BASE.index(f"[{key}]")
+    stop = BASE.find("\n[", start)
+    add(False, f"no {key}", BASE[:start] + (BASE[stop + 1 :] if stop > 0 else ""))
+add(False, "unknown section", BASE + "[weather]\nwind = 1\n")
+add(False, "top-level mirror", top('mirror = ["v"]'))
+for value in ("2", '"1"', "1.0", "true", "0"):
+    add(False, f"format {value}", BASE.replace("format = 1", f"format = {value}"))
+
+# numbers
+for n in ("0", "-7", "3.25", "1e-3", "12e3", "-0.5e2", "0.1", '"1/3"', '"sqrt(2)/2"', '"2*pi/5"', '"2**-1"', '"-2**0.5"', '"4**1.5"', "9" * 3999, '"exp(1)"',
+          '"log(2)"', '"max(1, 2)"', '"clip(3, 0, 1)"', '"abs(-2)"', '"atan(1)*4"', '"cosh(0.3)"', '"bezier(0.5, 0, 1, 0)"', '"1e-3"', "1e9999"):  # fmt: skip
+    add(True, f"constant {n[:30]}", BASE.replace("g = 9.81", f"g = 9.81\nc = {n}"))
+for n in ("1_0", "0x1F", "0o7", "0b1", "+3", "inf", "-inf", "nan", "+1.5", "1E3", "1e+3", "1e10000", "1e1000000000", "1979-05-27", "07:32:00", "true", "[1]", "{}",
+          '"1_0"', '"+3"', '".5"', '"5."', '"1e"', '"0x1F"', '"01"', '"1 2"', '""', '" "', '"1/0"', '"sqrt(-1)"', '"log(0)"', '"log(-1)"', '"asin(2)"', '"v"', '"t"', '"nope"', "9" * 4001,
+          '"' + "9" * 4001 + '"', '"9**9**9"', '"((9**64)**64)**64"', '"2**65"', '"2**0.3"', '"2**pi"', '"1e9999*1e9999*1e9999*1e9999*1e9999*1e9999*1e9999*1e9999*1e9999*1e9999"', '"٣"',
+          '"1\\n"x'):  # fmt: skip
+    add(False, f"constant {n[:30]}", BASE.replace("g = 9.81", f"g = 9.81\nc = {n}"))
+add(True, "constants of constants", swap("g = 9.81", 'a = "b/2"\nb = "g"\ng = 9.81'))
+add(False, "constants in a ring", swap("g = 9.81", 'a = "b"\nb = "a"\ng = 9.81'))
+add(True, "gain of constants", swap("kappa = 0.1", 'kappa = "1/g"'))
+add(False, "constant of a gain", swap("g = 9.81", 'g = "kappa"'))
+
+# names
+for name in ("T2", "a_b", "A" * 40, "inf", "e"):
+    add(True, f"name {name[:20]}", BASE.replace("g = 9.81", f"g = 9.81\n{name} = 1"))
+for name in (
+    "2T",
+    "_a",
+    "A" * 41,
+    "t",
+    "pi",
+    "sin",
+    "min",
+    "gain",
+    "next",
+    "value",
+    "settles",
+    "target",
+    "during",
+    "dt",
+    "bezier",
+    "v",
+    "T",
+    "kappa",
+    "w",
+    '"a b"',
+    '"a.b"',
+    '"é"',
+    '""',
+):
+    add(False, f"name {name[:20]}", BASE.replace("g = 9.81", f"g = 9.81\n{name} = 1"))
+
+# expressions in next
+for e in ("v/2", "-v**2", "2*-v/9", "v*(1 + v)/4", "sqrt(1 + v)/4", "exp(-v)/9 + log(2 + v)", "sin(v)*cos(v) + tan(v/9)", "asin(v/9) + acos(v/9)", "atan(v)/2", "sinh(v)/9 + cosh(v)/9",
+          "tanh(v)/2", "abs(v)/2", "min(v, 1)/2", "max(v, 0, T)", "clip(v, 0, 1)/2", "bezier(v, 0, 1, 2)/9", "target(v)", "pi*v/9", "v**0.5", "v**(1/2)", "v**-3", "(1 + v)**64", "v**kappa2",
+          "w*v/9 + foot", "((((v))))/2", "v - - v", "v\\t+ 1", "(" * 60 + "v" + ")" * 60, "-" * 60 + "v", "v" + "+v" * 2000, "load*v", "1e-3*v", "v ** 2"):  # fmt: skip
+    add(True, f"next {e[:24]}", swap("v/2 + foot", e).replace("kappa = 0.1", "kappa = 0.1\nkappa2 = 2"))
+for e in ("", "v +", "* v", "2v", "v v", "v(2)", "sin v", "sin()", "sin(v, v)", "min(v)", "clip(v, 1)", "bezier(v)", "foo(v)", "u", "v < 1", "v.real", "v[0]", "'v'", "lambda: 0", "__import__('os')",
+          "[v for v in v]", "{v}", "v if v else v", "v = 1", "v; v", "v**v", "v**T", "v**65", "v**0.3", "v**w", "(v", "v)", "target(T)", "target(v + 1)", "next(v)", "dt(v)", "t", "1/0 + v", "v @ v", "v // 2", "v % 2", "v ^ 2",
+          "+v", "v \\u00d7 2", "pi()", "sin", "gain", "(" * 65 + "v" + ")" * 65, "-" * 65 + "v", "v" * 50, "(" * 9000, "-" * 9999, "v" + "+v" * 5001, "ｖ/2", "v\\u00a0/2", "sqrt(-1)*v", "1e99999*v"):  # fmt: skip
+    add(False, f"next {e[:24]}", swap("v/2 + foot", e))
+add(False, "next of an unknown state", swap('v = "v/2 + foot"', 'v = "v/2 + foot"\nu = 1'))
+add(False, "next is a list", swap('v = "v/2 + foot"', 'v = ["v"]'))
+add(False, "next is a flag", swap('v = "v/2 + foot"', "v = true"))
+
+# ranges
+for r in ("[0, 0]", '["-kappa", "kappa"]', '["0.38 - kappa", 2]', '["sqrt(2)", "sqrt(2)"]', '["-pi", "pi"]', "{ values = [0.3, 0.4] }", "{ values = [1] }", '{ range = [0, 1], unit = "s" }',
+          "{ range = [0, 1], held = true }", "{ range = [0, 1], held = true, change = 0 }", '{ range = [0, 1], held = true, change = "kappa" }', "{ range = [0, 1], held = false }",
+          "{ values = [1, 2], held = true, change = 1 }"):  # fmt: skip
+    add(True, f"uncertain {r}", swap("T = [0.36, 0.40]", f"T = {r}"))
+for r in ("[1, 0]", "[0]", "[0, 1, 2]", "0.4", '"0.4"', "[]", "{}", "{ range = [0, 1], values = [1] }", "{ values = [] }", "{ values = 1 }", '{ values = ["v"] }', "{ range = [0, 1], change = 0.1 }",
+          "{ range = [0, 1], held = true, change = -0.1 }", "{ range = [0, 1], within = true }", "{ range = [0, 1], held = 1 }", '{ range = [0, 1], held = "true" }', "{ range = [0, 1], unit = 3 }",
+          "{ range = [0, 1], step = 1 }", '["v", 1]', '["T", 1]', '["w", 9]', "[nan, 1]", "[0, inf]", '["pi", "sqrt(2)"]', "[true, false]", "[[0], 1]"):  # fmt: skip
+    add(False, f"uncertain {r}", swap("T = [0.36, 0.40]", f"T = {r}"))
+add(False, "state with values", swap('v = { range = [-0.2, 1.0], unit = "m/s" }', "v = { values = [1] }"))
+add(False, "state held", swap('unit = "m/s" }', "held = true }"))
+add(False, "state range reversed", swap("[-0.2, 1.0]", "[1.0, -0.2]"))
+
+# definitions, targets
+add(True, "definitions in any order", swap('w = "sqrt(g/0.62)"', 'w = "a + 1"\na = "b"\nb = "g"'))
+add(False, "definitions in a ring", swap('w = "sqrt(g/0.62)"', 'w = "a"\na = "b"\nb = "w"'))
+add(False, "definition of itself", swap('w = "sqrt(g/0.62)"', 'w = "w"'))
+add(True, "target held", swap("v = 0.4\n", 'v = "load/4"\n'))
+add(True, "target by definition", swap("v = 0.4\n", 'v = "w/10 + kappa"\n'))
+add(False, "target of a state", swap("v = 0.4\n", 'v = "v"\n'))
+add(False, "target not held", swap("v = 0.4\n", 'v = "T"\n'))
+add(False, "target by a definition that is not held", swap("v = 0.4\n", 'v = "foot"\n'))
+add(False, "target of itself", swap("v = 0.4\n", 'v = "target(v)"\n'))
+add(False, "target of an unknown state", swap("v = 0.4\n", "v = 0.4\nu = 1\n"))
+add(
+    False,
+    "many definitions in a ring",
+    BASE.replace('w = "sqrt(g/0.62)"', "\n".join(f'd{k} = "d{(k + 1) % 500}"' for k in range(500)) + '\nw = "d0"'),
+)
+add(
+    True,
+    "a long chain of definitions",
+    BASE.replace('w = "sqrt(g/0.62)"', "\n".join(f'd{k} = "d{k + 1}"' for k in range(500)) + '\nd500 = "1"\nw = "d0"'),
+)
+
+# top-level keys
+for t in (
+    'notes = "free"',
+    'route = "slope"',
+    'route = "curve"',
+    'correction = ["foot"]',
+    "shrink = true",
+    "horizon = 3",
+    'notes = """a\nb"""',
+):
+    add(True, t[:30], top(t))
+for t in ("notes = 1", "notes = 1.5", 'route = "fast"', "route = 1", "correction = []", 'correction = "foot"', 'correction = ["v"]', 'correction = ["foot", "foot"]', "correction = [1]", "shrink = 1",
+          "horizon = 0", "horizon = 65", "horizon = 1.5", 'horizon = "2"', "horizon = true", "titel = 1", "require = []", "require = 1", "library = []", "stance = {}"):  # fmt: skip
+    add(False, t[:30], top(t))
+for t in (
+    'kind = "auto"\nweights = { v = 1 }',
+    'kind = "box"',
+    'kind = "ellipsoid"',
+    "weights = { v = 2 }",
+    'weights = { v = "1/kappa" }',
+    "",
+):
+    add(True, f"metric {t[:30]}", f"{BASE}[metric]\n{t}\n")
+for t in (
+    'kind = "round"',
+    "kind = 1",
+    "weights = { u = 1 }",
+    "weights = { v = 0 }",
+    "weights = { v = -1 }",
+    "weights = 1",
+    "norm = 2",
+):
+    add(False, f"metric {t[:30]}", f"{BASE}[metric]\n{t}\n")
+for t in ("gap = 1e-6", "cells = 10", "seconds = 0.5", 'gap = "1/1000"', "gap = 1e-3\ncells = 200000\nseconds = 600"):
+    add(True, f"effort {t[:30]}", f"{BASE}[effort]\n{t}\n")
+for t in (
+    "gap = 0",
+    "gap = 1",
+    "gap = -1e-3",
+    "cells = 0",
+    "cells = 1.5",
+    'cells = "10"',
+    "seconds = 0",
+    "seconds = -1",
+    "threads = 2",
+    "gap = true",
+):
+    add(False, f"effort {t[:30]}", f"{BASE}[effort]\n{t}\n")
+
+# requirements
+for r in ("settles", "gain <= 0.8", "gain < 1", "residual <= 0.1", "bound <= 0.1", "bound(v) < 0.1", "sharp_bound(v) <= 1", "radius(v) >= 0.3", "push(v) > 0.1", "steps(v, 0.5, 0.1) <= 9", "sensitivity(v, foot) < 0",
+          "sensitivity(v, T)", "sensitivity(v, g) > 0", "value(v*w)", "value(next(v)) <= 1", "value(v) >= kappa", "always(v <= 1)", "always(next(v) - v < w)", "gain<=kappa*9", "  gain  <=  0.8  "):  # fmt: skip
+    add(True, f"require {r}", require(r))
+for r in ("", "gain", "gain >= 0.8", "gain > 0.8", "gain = 0.8", "gain == 0.8", "gain <= v", "gain <= 0.8 <= 1", "0.8 >= gain", "gain(v) <= 1", "residual(v) < 1", "radius(v) <= 0.3", "push(v) < 1", "push > 1", "push(v, during) >= 1",
+          "steps(v) <= 9", "steps(v, 1, 2) >= 9", "bound(u) <= 1", "bound(T) <= 1", "speed <= 1", "sensitivity(v) < 0", "sensitivity(v, nope) < 0", "sensitivity(T, v) < 0", "sensitivity < 0", "value() < 1", "value < 1",
+          "value(nope)", "always(v)", "always(v <= 1) <= 2", "always v <= 1", "throughout(v <= 1)", "settles <= 1", "settles settles", "value(next(T))", "gain <= 1/0", "value(v) <= t", "radius(v) >= 1 2"):  # fmt: skip
+    add(False, f"require {r}", require(r))
+add(True, "over a definition", require("sensitivity(v, foot) < 0", "over = { foot = [-0.4, 0.4], T = [0.3, 0.5] }"))
+add(True, "over a gain", require("value(v)", "over = { kappa = [0, 1] }"))
+for r, more in (("value(v)", "over = { foot = [0, 1] }"), ("sensitivity(v, foot)", "over = { nope = [0, 1] }"), ("value(v)", "over = { T = [1, 0] }"), ("value(v)", "over = { T = 1 }"), ("value(v)", "over = 1"),
+                ("value(v)", 'in = "left"'), ("value(v)", "because = 1")):  # fmt: skip
+    add(False, f"{r} {more}", require(r, more))
+add(False, "require without that", BASE + "[[require]]\nover = {}\n")
+add(False, "require that is a number", BASE + "[[require]]\nthat = 1\n")
+
+# libraries
+GOOD_CSV = {
+    "shuffled": "reach,period,speed\n0.21,0.5,1\n0,0.3,0\n0.13,0.3,1\n0,0.5,0\n", "carriage returns": CSV.replace("\n", "\r\n"), "no last newline": CSV.rstrip("\n"),
+    "exponents": CSV.replace("0.21", "21e-2"), "two columns": "speed,period,reach,lift\n0,0.3,0,1\n0,0.5,0,1\n1,0.3,0.13,1\n1,0.5,0.21,1\n",
+}  # fmt: skip
+for name, text in GOOD_CSV.items():
+    add(True, f"library {name}", LIBRARY, {"gaits.csv": text})
+BAD_CSV = {
+    "empty": "", "header only": "speed,period,reach\n", "missing node": CSV.replace("1,0.5,0.21\n", ""), "repeated node": CSV + "1,0.5,0.21\n", "blank cell": CSV.replace("0.21", ""), "text": CSV.replace("0.21", "fast"),
+    "nan": CSV.replace("0.21", "nan"), "infinite": CSV.replace("0.21", "inf"), "plus": CSV.replace("0.21", "+0.21"), "blank": CSV.replace("0.21", " 0.21"), "quotes": CSV.replace("0.21", '"0.21"'), "short row": CSV.replace(",0.21", ""),
+    "long row": CSV.replace("0.21", "0.21,1"), "blank line": CSV.replace("\n1,0.3", "\n\n1,0.3"), "no such axis": CSV.replace("speed", "pace"), "no column left": "speed,period\n0,0.3\n0,0.5\n1,0.3\n1,0.5\n",
+    "column twice": "speed,period,reach,reach\n0,0.3,0,0\n0,0.5,0,0\n1,0.3,1,1\n1,0.5,1,1\n", "column named as a state": CSV.replace("reach", "v"), "reserved column": CSV.replace("reach", "gain"), "one node": "speed,period,reach\n0,0.3,0\n0,0.5,0\n",
+    "semicolons": CSV.replace(",", ";"), "BOM": "\ufeff" + CSV, "NUL": CSV + "\0", "expression": CSV.replace("0.21", "1/5"), "tab": CSV.replace(",0.21", ",\t0.21"),
+}  # fmt: skip
+for name, text in BAD_CSV.items():
+    add(False, f"library {name}", LIBRARY, {"gaits.csv": text})
+add(False, "library not there", LIBRARY)
+for a, b in (("gaits.csv", "../gaits.csv"), ("gaits.csv", "/gaits.csv"), ("gaits.csv", "./gaits.csv"), ("gaits.csv", ""), ('speed = "v", period = "T"', ""), ('speed = "v"', 'speed = "reach"'), ('speed = "v"', 'speed = "nope"'),
+             ('speed = "v"', "speed = true"), ('at = { speed = "v", period = "T" }', ""), ('at = {', 'sheet = 1\nat = {')):  # fmt: skip
+    add(
+        False,
+        f"library {b[:30]}",
+        swap(a, b, LIBRARY),
+        {"gaits.csv": CSV, "../gaits.csv": CSV, "/gaits.csv": CSV, "./gaits.csv": CSV, "": CSV},
+    )
+add(True, "library below", swap("gaits.csv", "data/gaits.csv", LIBRARY), {"data/gaits.csv": CSV})
+add(True, "library read at a definition", swap('speed = "v"', 'speed = "foot*2"', LIBRARY), {"gaits.csv": CSV})
+add(
+    False,
+    "library read at a definition of a column",
+    swap('speed = "v"', 'speed = "foot"', LIBRARY).replace("kappa*(v - target(v))", "reach"),
+    {"gaits.csv": CSV},
+)
+add(True, "library column used", swap("v/2 + foot", "v/2 + reach", LIBRARY), {"gaits.csv": CSV})
+
+# dynamics
+add(True, "touchdown by condition", swap('duration = "T"', 'until = "0.3 - t + x/9"\nwithin = [0.1, 0.6]', DYNAMICS))
+add(True, "throughout", DYNAMICS + '[[require]]\nthat = "throughout(x <= 0.5*height)"\n')
+add(True, "push during", DYNAMICS + '[[require]]\nthat = "push(v, during) >= 0.1"\n')
+for a, b in (('duration = "T"', ""), ('duration = "T"', 'until = "x"'), ('duration = "T"', 'duration = "T"\nuntil = "x"\nwithin = [0, 1]'), ('duration = "T"', 'until = "x"\nwithin = [1, 0]'), ('duration = "T"', 'until = "x"\nwithin = [-1, 1]'),
+             ('duration = "T"', 'duration = "t"'), ('duration = "T"', 'duration = "xd"'), ('duration = "T"', 'duration = "height"'), ('x = "-0.1*v"', 'x = "t"'), ('x = "-0.1*v"', 'x = "height"'), ('x = "-0.1*v"\n', ""),
+             ('x = "xd"\n', ""), ("v = 0.5", 'v = "height"'), ("within = true", "within = true, held = true"), ("range = [-0.4, 0.4], within", "values = [1], within"), ('duration = "T"', 'duration = "T"\nsolver = 1')):  # fmt: skip
+    add(False, f"dynamics {b[:30]}", swap(a, b, DYNAMICS))
+
+# stances
+add(True, "require in a stance", STANCES + '[[require]]\nthat = "bound(vy) <= 0.2"\nin = "left"\n')
+for a, b in (('then = "right"', 'then = "up"'), ('then = "right"\n', ""), ('then = "right"', "then = []"), ('mirror = ["vy"]', 'mirror = ["T"]'), ('define = { side = "-1" }\n', ""), ('next = { vy = "vy/2 + side/100" }\ntarget = { vy = -0.12 }', "target = { vy = -0.12 }"),
+             ("target = { vy = 0.12 }", "target = { vy = 0.12, vx = 0.1 }"), ('define = { side = "1" }', 'define = { side = "1", w = "2" }'), ("state = { vy = [-0.6, 0.1] }\n", ""), ('then = "right"', 'then = "right"\nafter = 1'), ("[stance.left]", '[stance."2"]')):  # fmt: skip
+    add(False, f"stance {b[:30]}", swap(a, b, STANCES))
+add(False, "in an unknown stance", STANCES + '[[require]]\nthat = "settles"\nin = "up"\n')
+
+# settings
+add(True, "set a number", BASE, kappa="0.2")
+add(True, "set an expression", BASE, kappa="1/3")
+add(True, "set a negative number", BASE, kappa="-0.2")
+for name, text in (
+    ("g", "1"),
+    ("nope", "1"),
+    ("kappa", ""),
+    ("kappa", "1_0"),
+    ("kappa", "g"),
+    ("kappa", "1/0"),
+    ("kappa", "nan"),
+    ("kappa", "0.2 " + "x"),
+):
+    add(False, f"set {name}={text}", BASE, **{name: text})
+for depth in (40, 65, 100_000):
+    add(False, f"nested lists {depth}", BASE + "[[require]]\nthat = " + "[" * depth + "]" * depth + "\n")

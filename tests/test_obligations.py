@@ -1,0 +1,82 @@
+"""The two lists of obligations, and what is in proofs/, held against each other."""
+
+from __future__ import annotations
+
+from fractions import Fraction
+from pathlib import Path
+
+import pytest
+
+from tests.corpus import CASES
+from ultibound.checker.derive import Derivation
+from ultibound.checker.derive import Domain as CheckerDomain
+from ultibound.checker.rules import SHAPES, THEOREMS
+from ultibound.checker.statement import read_statement
+from ultibound.claim import parse_claim
+from ultibound.claim.obligations import Domain, Obligation, Obligations, not_yet
+
+PROOFS = Path(__file__).parents[1] / "proofs"
+PROVABLE = [c for c in CASES if c.accepted and not_yet(parse_claim(c.text, c.settings, c.data, "c")) is None]
+
+
+def spelled_out(graph: list[tuple[str, tuple[int, ...], object]], root: int) -> tuple[object, ...]:
+    """The terms a root is built from, numbered alike on both sides."""
+    number: dict[int, int] = {}
+    out = []
+    below = {root}
+    for k in range(root, -1, -1):
+        if k in below:
+            below.update(graph[k][1])
+    for k in sorted(below):
+        op, args, payload = graph[k]
+        number[k] = len(out)
+        out.append((op, tuple(number[a] for a in args), payload))
+    return tuple(out)
+
+
+@pytest.mark.parametrize("case", PROVABLE, ids=lambda c: c.name[:40].encode("ascii", "replace").decode())
+@pytest.mark.parametrize("ball", [False, True])
+def test_both_lists_mean_the_same(case: object, ball: bool) -> None:
+    claim = parse_claim(case.text, case.settings, case.data, "c")  # type: ignore[attr-defined]
+    o = Obligations(claim)
+    d = Derivation(read_statement(claim.text, claim.settings, claim.data))
+    target = (Fraction(1, 2), Fraction(1, 2))
+    mine = Domain("ball" if ball else "region", Fraction(1, 8), target)
+    theirs = CheckerDomain(ball, Fraction(1, 8), target)
+    listed: list[Obligation] = [
+        o.target(),
+        o.image(),
+        o.miss(),
+        o.slope(mine),
+        *(o.target_slope(h) for h in o.moving()),
+    ]
+    listed += [
+        o.requirement(n, mine) for n, r in enumerate(claim.requirements, 1) if r.kind in ("value", "sensitivity")
+    ]
+    gates = [(g.op, g.args, g.value if g.op in ("number", "power") else g.name or None) for g in o.graph.gates]
+    for obligation in listed:
+        meaning = d.meaning(obligation.name, theirs)
+        assert obligation.by == meaning.by
+        assert [(v.name, v.cells, v.listed) for v in obligation.variables] == [
+            (v.name, v.cells, v.listed) for v in meaning.variables
+        ]
+        assert spelled_out(gates, obligation.root) == spelled_out(d.terms.all, meaning.root)
+    assert o.region() == d.region()
+
+
+def test_enough_claims_were_compared() -> None:
+    assert len(PROVABLE) > 60
+
+
+def test_every_rule_has_its_page_and_every_page_is_listed() -> None:
+    table = (PROOFS / "obligations.md").read_text(encoding="utf-8")
+    for rule in SHAPES:
+        row = next(line for line in table.splitlines() if line.startswith("| `") and f"`{rule}`" in line.split("|")[1] and ".md" in line)
+        pages = [p.strip(" `") for p in row.split("|")[2].split(",")]
+        assert pages and all((PROOFS / p).exists() for p in pages), rule
+    assert set(THEOREMS) < set(SHAPES)
+    listed = {p for p in PROOFS.glob("*.md") if f"`{p.name}`" in table or p.name == "obligations.md"}
+    assert listed == set(PROOFS.glob("*.md"))
+    checker = "".join(p.read_text(encoding="utf-8") for p in (PROOFS.parent / "ultibound" / "checker").glob("*.py"))
+    for page in PROOFS.glob("*.md"):
+        assert f"proofs/{page.name}" in checker, page.name
