@@ -71,7 +71,11 @@ def test_enough_claims_were_compared() -> None:
 def test_every_rule_has_its_page_and_every_page_is_listed() -> None:
     table = (PROOFS / "obligations.md").read_text(encoding="utf-8")
     for rule in SHAPES:
-        row = next(line for line in table.splitlines() if line.startswith("| `") and f"`{rule}`" in line.split("|")[1] and ".md" in line)
+        row = next(
+            line
+            for line in table.splitlines()
+            if line.startswith("| `") and f"`{rule}`" in line.split("|")[1] and ".md" in line
+        )
         pages = [p.strip(" `") for p in row.split("|")[2].split(",")]
         assert pages and all((PROOFS / p).exists() for p in pages), rule
     assert set(THEOREMS) < set(SHAPES)

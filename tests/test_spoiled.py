@@ -91,6 +91,26 @@ def test_the_good_one_is_accepted(entries: dict[str, Any]) -> None:
     assert verdict.status == "valid" and verdict.lines == len(entries["proof"]) and verdict.leaves > 0
 
 
+def test_the_schema_describes_it(entries: dict[str, Any]) -> None:
+    from jsonschema import Draft202012Validator
+
+    from ultibound.checker.rules import SHAPES
+
+    schema = json.loads((CHECKER.parent / "certificate" / "schema.json").read_text())
+    Draft202012Validator.check_schema(schema)
+    validator = Draft202012Validator(schema)
+    assert not list(validator.iter_errors(json.loads(canonical(entries))))
+    assert set(schema["$defs"]["line"]["properties"]["rule"]["enum"]) == set(SHAPES)
+    for change in (
+        lambda e: e["results"].update(extra=1),
+        lambda e: e["proof"][0].update(uses=[0]),
+        lambda e: e["results"]["gain"].update(upper=0.5),
+    ):
+        changed = copy.deepcopy(entries)
+        change(changed)
+        assert list(validator.iter_errors(changed))
+
+
 def quantities(value: Any, path: tuple[Any, ...] = ()) -> Iterator[tuple[tuple[Any, ...], str]]:
     """Every numeric leaf, with its path."""
     if isinstance(value, dict):
