@@ -7,8 +7,8 @@ import time
 from pathlib import Path
 
 import pytest
-from tests.corpus import BASE, CSV, LIBRARY, swap
 
+from tests.corpus import BASE, CSV, LIBRARY, swap
 from ultibound.claim import ClaimError, parse_claim, read_claim
 
 
