@@ -142,6 +142,7 @@ for n in ("1_0", "0x1F", "0o7", "0b1", "+3", "inf", "-inf", "nan", "+1.5", "1E3"
     add(False, f"constant {n[:30]}", BASE.replace("g = 9.81", f"g = 9.81\nc = {n}"))
 add(True, "constants of constants", swap("g = 9.81", 'a = "b/2"\nb = "g"\ng = 9.81'))
 add(False, "constants in a ring", swap("g = 9.81", 'a = "b"\nb = "a"\ng = 9.81'))
+add(True, "a constant named e", swap("g = 9.81", 'e = "1e-3"\ng = "9.81 + e - 1e-3"'))
 add(True, "gain of constants", swap("kappa = 0.1", 'kappa = "1/g"'))
 add(False, "constant of a gain", swap("g = 9.81", 'g = "kappa"'))
 

@@ -26,13 +26,13 @@ format = 1
 [constants]
 a = "sqrt(2)/2"
 [state]
-v = { range = [-1, 1], unit = "m/s" }
+v = { range = [-0.5, 1.5], unit = "m/s" }
 [uncertain]
 d = [-0.05, 0.05]
 p = { values = [0.1, 0.2] }
 c = { range = [-0.1, 0.1], held = true, change = 0.01 }
 [next]
-v = "c + a*sin(v - c) + d + p/100 + 0.8*(v - c)**3"
+v = "c - a*sin(v - c) + d + p/100 + 0.8*(v - c)**3"
 [target]
 v = "c"
 [[require]]
@@ -269,6 +269,21 @@ def sample_pendulum() -> dict[str, Any]:
     if not _PENDULUM:
         _PENDULUM.append(sample("pendulum"))
     return _PENDULUM[0]
+
+
+def test_a_smaller_ball_proves_no_gain() -> None:
+    """Every line of this certificate holds; but gain, bound and value would be about a smaller set than the claim asks."""
+    entries = copy.deepcopy(sample("ball"))
+    ball = next(line for line in entries["proof"] if line["rule"] == "largest-ball")
+    small = Fraction(ball["concludes"]["radius"]) * Fraction(99, 100)
+    ball["concludes"]["radius"] = str(small)
+    results = entries["results"]
+    for quantity in (results["set"]["radius"], results["radius"], results["states"]["v"]["radius"]):
+        quantity["lower"] = str(small)
+    rejected(resealed(entries), "verdict: proved is claimed, undecided was derived")
+    for r in results["requirements"]:
+        r.update(verdict="undecided", limited_by="a smaller ball")
+    assert check(resealed(entries)).status == "valid"
 
 
 def test_a_verdict_turned_is_rejected() -> None:

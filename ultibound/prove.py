@@ -31,6 +31,7 @@ BITS = 72
 SHARPER = 1e-2  # factor on the gap when an undecided requirement is pursued
 FINEST = 1e-11
 COARSE = 0.03
+TARGET_GAP = 1e-8  # the largest ball must be known to 1e-6: proofs/invariant-set.md (4)
 Watch = Callable[[str, int, float], None]
 
 
@@ -89,7 +90,7 @@ class Attempt:
     def certificate(self) -> tuple[Certificate, bool]:
         """The certificate, and whether a smaller gap may still decide a requirement."""
         s, w, o = self.obligations.state, self.writer, self.obligations
-        target = self.enclose(o.target(), None, points=True)
+        target = self.enclose(o.target(), None, points=True, gap=min(self.gap, TARGET_GAP))
         region, inner = o.region()
         if target is None:
             raise ClaimError.of(

@@ -11,6 +11,7 @@ from .rules import Line, Proof, Rejected, quantity
 
 DIGITS = 20
 REMARK = 1000
+SLACK = Fraction(1, 10**6)  # share by which the largest ball may be missed where the target is known to a gap only
 
 
 @dataclass(frozen=True)
@@ -48,6 +49,10 @@ class Results:
         centre = proof.lines[ball.uses[0]].concludes
         self.centre = Span(centre["lower"], centre["upper"])
         self.radius = Span(ball.concludes["radius"], self.reach() if self.settled else None)
+        near = (
+            self.radius.upper is not None and self.radius.upper - ball.concludes["radius"] <= SLACK * self.radius.upper
+        )
+        self.whole = self.kind == "region" or (self.settled and near)
         self.gain = self.residual = Span(None, None)
         self.bound: Span | None = None
         if pair is not None:
@@ -59,6 +64,8 @@ class Results:
                 lower = None if k is None or least is None or k >= 1 else least / (1 - k)
                 self.bound = Span(lower, bounded.concludes["bound"])
         self.requirements = [self.required(n, r) for n, r in enumerate(self.statement.requirements, 1)]
+
+    # A ball smaller than the largest proves the radius alone (proofs/invariant-set.md (4)): `whole` tells it apart.
 
     def reach(self) -> Fraction | None:
         """The least distance to the edge of the region of a target surely taken."""
@@ -111,7 +118,7 @@ class Results:
         c = constant(r.constant, self.statement.values) if r.constant is not None else None
         free = self.statement.route == "slope" or not self.statement.correction
         if r.kind == "settles":
-            ok = self.bound is not None and less(self.bound.upper, self.radius.lower)
+            ok = self.whole and self.bound is not None and less(self.bound.upper, self.radius.lower)
             return Outcome("proved" if ok else "undecided", self.bound)
         if r.kind in ("value", "sensitivity"):
             return self.ranged(number, r, c)
@@ -122,7 +129,7 @@ class Results:
         if r.kind == "radius":
             proved = compared(r.relation, Span(span.lower, None), c)
         else:
-            proved = self.settled and compared(r.relation, Span(None, span.upper), c)
+            proved = self.whole and compared(r.relation, Span(None, span.upper), c)
         refutable = r.kind in ("gain", "residual") and free
         refuted = refutable and opposed(r.relation, Span(None, span.lower), c)
         return Outcome("proved" if proved else "refuted" if refuted else "undecided", span)
@@ -132,7 +139,7 @@ class Results:
         if line is not None and line.domain != self.domain:
             raise Rejected(f"require[{number}]: over another set than the gain")
         value = Span(line.concludes["lower"], line.concludes["upper"]) if line is not None else None
-        proved = line is not None and (self.settled or not line.on_set)
+        proved = line is not None and (self.whole or not line.on_set)
         if c is not None:
             proved = proved and value is not None and compared(r.relation, value, c)
             if opposed(r.relation, taken, c):

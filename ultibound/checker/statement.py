@@ -9,20 +9,7 @@ from dataclasses import dataclass, field, replace
 from fractions import Fraction
 from typing import Any
 
-from .grammar import (
-    DEEPEST,
-    NAME,
-    RESERVED,
-    Ends,
-    Expression,
-    Node,
-    Parser,
-    Refused,
-    checked,
-    constant,
-    names,
-    parse,
-)
+from .grammar import DEEPEST, NAME, RESERVED, Ends, Expression, Node, Parser, Refused, checked, constant, names, parse
 from .library import Library, read_library
 from .numerals import spelled
 
@@ -57,6 +44,7 @@ PIECE = re.compile(
     r"|[^\s\"'\#\[\]{}=,]+|.",
     re.DOTALL,
 )
+WORD = re.compile(r"(?<![0-9A-Za-z_.])[A-Za-z][A-Za-z0-9_]*", re.ASCII)
 LOWER, UPPER = ("<", "<="), (">", ">=")
 KINDS: dict[str, tuple[str, ...]] = {
     **dict.fromkeys(("gain", "residual", "bound", "sharp_bound", "steps"), LOWER),
@@ -255,8 +243,8 @@ class Reader:
         self.declared.add(name)
         return name
 
-    def named(self, section: str, first: set[str]) -> dict[str, Expression]:
-        """Constants or gains in dependency order; `first` are the sections' names they may use besides."""
+    def named(self, section: str) -> dict[str, Expression]:
+        """Constants or gains in dependency order; their values are noted."""
         raw = dict(table(self.raw.get(section, {}), section))
         for name in raw:
             self.declare(name, section)
@@ -270,7 +258,7 @@ class Reader:
         while waiting:
             before = len(waiting)
             for name, value in list(waiting.items()):
-                used = set(re.findall(NAME, value)) if type(value) is str else set()
+                used = set(WORD.findall(value)) if type(value) is str else set()
                 if used & (set(waiting) - {name}) or (used & {name} and used & set(raw)):
                     continue
                 found[name], self.values[name] = self.constant(value, f"{section}.{name}")
@@ -310,8 +298,7 @@ class Reader:
     def statement(self) -> Statement:
         raw = self.raw
         title, notes = text_of(raw.get("title", ""), "title"), text_of(raw.get("notes", ""), "notes")
-        constants = self.named("constants", set())
-        gains = self.named("gains", set())
+        constants, gains = self.named("constants"), self.named("gains")
         stances = {
             n: table(s, f"stance.{n}", ("then", "mirror", "define", "state", "next", "target", "dynamics"))
             for n, s in table(raw.get("stance", {}), "stance").items()

@@ -26,7 +26,7 @@ TOP = (
     "format", "title", "notes", "route", "correction", "shrink", "horizon", "constants", "gains", "state", "uncertain",
     "define", "next", "target", "metric", "effort", "require", "dynamics", "library", "stance",
 )  # fmt: skip
-NAME_ANYWHERE = re.compile(r"[A-Za-z][A-Za-z0-9_]*")
+NAME_ANYWHERE = re.compile(r"(?<![0-9A-Za-z_.])[A-Za-z][A-Za-z0-9_]*", re.ASCII)
 STANCE_KEYS = ("then", "mirror", "define", "state", "next", "target", "dynamics")
 T = TypeVar("T")
 
