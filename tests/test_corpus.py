@@ -6,7 +6,8 @@ import pytest
 
 from tests.corpus import CASES, Case
 from ultibound.checker.grammar import Refused
-from ultibound.checker.statement import Statement, read_statement
+from ultibound.checker.model import Statement
+from ultibound.checker.statement import read_statement
 from ultibound.claim import Claim, ClaimError, parse_claim
 
 

@@ -8,8 +8,8 @@ from fractions import Fraction
 from itertools import pairwise
 
 from .grammar import constant
+from .model import Quantity, Range, Requirement, Statement
 from .ranges import Ends
-from .statement import Quantity, Range, Requirement, Statement
 from .terms import Names, Terms
 
 

@@ -7,7 +7,7 @@ from itertools import pairwise
 from math import isqrt
 
 from .grammar import Expression
-from .statement import Stance, Statement
+from .model import Stance, Statement
 
 FOLDED_BITS = 2**17
 Term = tuple[str, tuple[int, ...], Fraction | str | None]
