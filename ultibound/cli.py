@@ -136,14 +136,15 @@ class Progress:
     """One line on standard error, renewed a few times a second, for people at a terminal."""
 
     def __init__(self) -> None:
-        self._last, self._shown = time.monotonic(), False
+        self._last, self._stage, self._shown = time.monotonic(), "", False
 
     def __enter__(self) -> Progress:
         return self
 
     def __call__(self, stage: str, leaves: int, high: float) -> None:
-        if sys.stderr.isatty() and time.monotonic() - self._last > 0.2:
-            self._last, self._shown = time.monotonic(), True
+        due = time.monotonic() - self._last > (0.2 if stage == self._stage else 0.02)
+        if sys.stderr.isatty() and due:
+            self._last, self._stage, self._shown = time.monotonic(), stage, True
             sys.stderr.write(f"\r\x1b[K{stage}: {leaves} boxes, upper end {high:.6g}  (Ctrl-C keeps what is proved)")
             sys.stderr.flush()
 

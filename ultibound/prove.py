@@ -18,7 +18,7 @@ from .bounding.search import Effort, Found, Point, search
 from .certificate.certificate import Certificate, sealed
 from .certificate.lines import Writer, downward, upward
 from .certificate.results import assembled
-from .checker import check
+from .checker import Verdict, check
 from .checker.reals import Undefined
 from .checker.results import Results
 from .checker.rules import Rejected
@@ -70,11 +70,24 @@ def prove(claim: Claim, watch: Watch | None = None) -> Certificate:
         gap *= SHARPER
         if not pursue or gap < FINEST or attempt.interrupted or time.monotonic() > until:
             break
-    data = certificate.to_bytes()
-    verdict = check(data)
+    verdict = _checked(certificate, attempt)
     if verdict.status != "valid":
         raise InternalError(f"{verdict.place}: {verdict.reason}")
     return certificate
+
+
+def _checked(certificate: Certificate, attempt: Attempt) -> Verdict:
+    """The checker's verdict on the finished bytes; the first Ctrl-C does not keep it from being reached."""
+
+    def watch(done: int, total: int) -> None:
+        attempt.watch("checking the certificate, line by line", done, float(total))
+
+    try:
+        return check(certificate.to_bytes(), watch)
+    except KeyboardInterrupt:
+        if attempt.interrupted:
+            raise
+        return check(certificate.to_bytes(), watch)
 
 
 class Attempt:
@@ -139,15 +152,17 @@ class Attempt:
     def _slope_route(self, domain: Domain, on: int) -> int | None:
         """Gain and residual: proofs/slope.md."""
         o, w = self.obligations, self.writer
-        parts = [self.enclose(o.slope(domain), on, magnitude=True), self.enclose(o.miss(), None, magnitude=True)]
-        parts += [self.enclose(o.target_slope(h), None, magnitude=True) for h in o.moving()]
-        known = [p for p in parts if p is not None]
-        if len(known) < len(parts):
+        slope = self.enclose(o.slope(domain), on, magnitude=True)
+        moves = [self.enclose(o.target_slope(h), None, magnitude=True) for h in o.moving()]
+        changes = [w.derivation.change(h)[1] for h in o.moving()]
+        moved = sum((_size(m) * c for m, c in zip(moves, changes, strict=True) if m), Fraction(0))
+        # the residual is a sum: its gap, not that of one part, is what counts
+        miss = self.enclose(o.miss(), None, magnitude=True, floor=self.gap * to_float(moved))
+        known = [p for p in (slope, miss, *moves) if p is not None]
+        if len(known) < 2 + len(moves):
             return None
-        gain, residual, *moved = (max(abs(p.lower), abs(p.upper)) for p in known)
-        residual += sum((m * w.derivation.change(h)[1] for m, h in zip(moved, o.moving(), strict=True)), Fraction(0))
-        uses = [p.line for p in known]
-        return w.theorem("slope", "slope", uses, {"gain": upward(gain), "residual": upward(residual)})
+        concludes = {"gain": upward(_size(known[0])), "residual": upward(_size(known[1]) + moved)}
+        return w.theorem("slope", "slope", [p.line for p in known], concludes)
 
     def _bound(self, invariant: int, pair: int) -> None:
         concluded = self.writer.proof.lines[pair].concludes
@@ -156,27 +171,39 @@ class Attempt:
             self.writer.theorem("ultimate-bound", "bound", [invariant, pair], {"bound": upward(bound)})
 
     def enclose(
-        self, obligation: Obligation, on: int | None, magnitude: bool = False, points: bool = True, gap: float = 0.0
+        self,
+        obligation: Obligation,
+        on: int | None,
+        magnitude: bool = False,
+        points: bool = True,
+        gap: float = 0.0,
+        floor: float = 0.0,
     ) -> Proved | None:
-        """A range line and the points nearest its ends; None where the checker finds no finite range."""
+        """A range line and the points nearest its ends; None where the checker finds no finite range.
+
+        `floor` is an absolute gap that is enough whatever the size of the quantity.
+        """
         w, name, wanted = self.writer, obligation.name, gap or self.gap
-        gap = wanted
-        rational = w.rational(name, on)
+        rational, share = w.rational(name, on), 1.0
         for _ in range(5):
-            found = self._search(obligation, magnitude, gap)
+            found = self._search(obligation, magnitude, wanted * share, floor * share)
             bits = 0 if rational else BITS + _extra(found)
+            self.watch(f"{name}: enclosing the leaves in the checker's arithmetic", found.leaves, found.upper)
             try:
                 ends = w.range(name, found.trees, bits, on)
+            except KeyboardInterrupt:
+                self._interrupt()
+                continue
             except Undefined as why:
                 self.limits[name] = str(why)
-                gap /= 16
+                share /= 16
                 if found.stopped:
                     return None
                 continue
             taken = [self._point(name, p, bits, on) for p in (found.highest, found.lowest)]
-            if found.stopped or _close(ends, [t[1] for t in taken if t], magnitude, Fraction(wanted)):
+            if found.stopped or _close(ends, [t[1] for t in taken if t], magnitude, wanted, floor):
                 break
-            gap /= 8
+            share /= 8
         else:
             if name in self.limits:
                 return None
@@ -187,7 +214,7 @@ class Attempt:
         concluded = w.proof.lines[line].concludes
         return Proved(line, concluded["lower"], concluded["upper"], found.stopped)
 
-    def _search(self, obligation: Obligation, magnitude: bool, gap: float) -> Found:
+    def _search(self, obligation: Obligation, magnitude: bool, gap: float, floor: float = 0.0) -> Found:
         key = obligation.root, obligation.by
         if key not in self._runners:
             names = [v.name for v in obligation.variables]
@@ -197,13 +224,20 @@ class Attempt:
         def watch(leaves: int, high: float) -> None:
             self.watch(obligation.name, leaves, high)
 
+        def effort() -> Effort:
+            return Effort(gap, self.claim.cells, self.until, watch, floor)
+
         try:
-            return search(self._runners[key], obligation, magnitude, Effort(gap, self.claim.cells, self.until, watch))
+            return search(self._runners[key], obligation, magnitude, effort())
         except KeyboardInterrupt:
-            if self.interrupted:
-                raise
-            self.interrupted, self.until = True, 0.0
-            return search(self._runners[key], obligation, magnitude, Effort(gap, self.claim.cells, 0.0))
+            self._interrupt()
+            return search(self._runners[key], obligation, magnitude, effort())
+
+    def _interrupt(self) -> None:
+        """The first Ctrl-C stops every search where it is; the second one ends the program."""
+        if self.interrupted:
+            raise KeyboardInterrupt
+        self.interrupted, self.until = True, 0.0
 
     def _point(
         self, name: str, point: Point, bits: int, on: int | None
@@ -306,17 +340,21 @@ class Attempt:
 
 
 def _close(
-    ends: tuple[Fraction, Fraction], taken: list[tuple[Fraction, Fraction]], magnitude: bool, gap: Fraction
+    ends: tuple[Fraction, Fraction], taken: list[tuple[Fraction, Fraction]], magnitude: bool, gap: float, floor: float
 ) -> bool:
     """Whether the measured ends are within the gap of values surely taken."""
     if not taken:
         return False
     high, low = max(t[0] for t in taken), min(t[1] for t in taken)
-    floor = gap / 10**6
+    share, least = Fraction(gap), max(Fraction(gap) / 10**6, Fraction(floor))
     if magnitude:
         most = max(high, -low, Fraction(0))
-        return max(abs(ends[0]), abs(ends[1])) - most <= max(gap * most, floor)
-    return ends[1] - high <= max(gap * abs(high), floor) and low - ends[0] <= max(gap * abs(low), floor)
+        return max(abs(ends[0]), abs(ends[1])) - most <= max(share * most, least)
+    return ends[1] - high <= max(share * abs(high), least) and low - ends[0] <= max(share * abs(low), least)
+
+
+def _size(p: Proved) -> Fraction:
+    return max(abs(p.lower), abs(p.upper))
 
 
 def _extra(found: Found) -> int:

@@ -34,6 +34,7 @@ class Effort:
     cells: int
     until: float
     watch: Callable[[int, float], None] = lambda leaves, gap: None
+    floor: float = 0.0  # an absolute gap that is enough
 
 
 @dataclass(frozen=True, slots=True)
@@ -101,7 +102,7 @@ def search(runner: Runner, obligation: Obligation, magnitude: bool, effort: Effo
     while len(live):
         parts = [_examine(runner, boxes, part, best, bool(obligation.by)) for part in _batches(live)]
         smear = np.concatenate(parts)
-        ceiling, floor = _allowed(best, magnitude, effort.gap * SHARE)
+        ceiling, floor = _allowed(best, magnitude, effort)
         bad = (boxes.upper[live] > ceiling) | (boxes.lower[live] < floor)
         effort.watch(leaves, float(np.max(boxes.upper[live], initial=0.0)))
         live, smear = live[bad], smear[bad]
@@ -130,12 +131,13 @@ def _batches(live: Any) -> list[Any]:
     return [live[k : k + BATCH] for k in range(0, len(live), BATCH)]
 
 
-def _allowed(best: tuple[_Best, _Best], magnitude: bool, gap: float) -> tuple[float, float]:
+def _allowed(best: tuple[_Best, _Best], magnitude: bool, effort: Effort) -> tuple[float, float]:
+    gap, least = effort.gap * SHARE, max(effort.floor, effort.gap * 1e-6) * SHARE
     top, bottom = best[0].value, -best[1].value
     if magnitude:
         top = max(abs(top), abs(bottom))
         bottom = -top
-    return top + max(gap * abs(top), gap * 1e-6), bottom - max(gap * abs(bottom), gap * 1e-6)
+    return top + max(gap * abs(top), least), bottom - max(gap * abs(bottom), least)
 
 
 def _bisect(boxes: _Boxes, live: Any, variable: Any) -> Any:
