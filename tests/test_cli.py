@@ -98,6 +98,7 @@ EXTRA
     ("sqrt(v)", "", "root of a negative number"),
     ("1/(v - 0.3)", "", "division by zero"),
     ("log(v + 1)", "", "logarithm"),
+    ("tan(2*v)", "", "tangent at a pole"),
     ("asin(2*v)", "", "asin of a number beyond 1"),
     ("abs(v)/2", "", "abs cannot be proved yet"),
     ("v/2", "horizon = 2", "horizon"),

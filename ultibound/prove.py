@@ -31,6 +31,11 @@ BITS = 72
 SHARPER = 1e-2  # factor on the gap when an undecided requirement is pursued
 FINEST = 1e-11
 COARSE = 0.03
+STOPS = {
+    "cells": "stopped at the limit of cells",
+    "seconds": "stopped at the limit of seconds",
+    "precision": "stopped at the precision of the search",
+}
 TARGET_GAP = 1e-8  # the largest ball must be known to 1e-6: proofs/invariant-set.md (4)
 Watch = Callable[[str, int, float], None]
 
@@ -290,9 +295,9 @@ class Attempt:
             parts.append("over sets a defined name free: its own expression is not used")
         pursue = False
         if outcome.verdict == "undecided":
-            names = [f"require[{number}]"] if r.kind in ("value", "sensitivity") else list(self.limits)
-            stops = {self.limits.get(n, "") for n in names} - {""}
-            parts += sorted(f"the search stopped at: {x}" for x in stops)
+            ranged = r.kind in ("value", "sensitivity")
+            names = [f"require[{number}]"] if ranged else [n for n in self.limits if not n.startswith("require")]
+            parts += [f"{n}: {STOPS.get(x, x)}" for n in names if (x := self.limits.get(n, ""))]
             if self.interrupted:
                 parts.append("interrupted")
             pursue = self._open(results, outcome.value, r.kind)
@@ -306,8 +311,15 @@ class Attempt:
                 "residual",
             ):
                 parts.append("no set that is mapped into itself was found" + self._size_that_would_do(results))
+            elif results.gain.upper is None and not ranged:
+                parts.append("no finite gain and residual were shown")
             elif r.kind == "settles":
-                parts.append("the bound is not below the radius of the set" + self._size_that_would_do(results))
+                short = (
+                    "the gain is not below 1"
+                    if results.bound is None
+                    else "the bound is not below the radius of the set"
+                )
+                parts.append(short + self._size_that_would_do(results))
             elif not parts or pursue:
                 parts.append("the constant lies between what is proved and what is attained")
         return ("; ".join(parts)[:900] or None), pursue
@@ -334,7 +346,7 @@ class Attempt:
 
         r = enough_radius(to_float(results.radius.lower or Fraction(0)), gain, to_float(results.residual.upper))
         if r is None:
-            return "; no size of region was found that would do, as the gain is not below 1"
+            return "; no larger region was found that would do"
         low, high = float(target[0]) - r, float(target[1]) + r
         return f"; a region of [{low:.4g}, {high:.4g}] would do (an estimate, not proved)"
 

@@ -51,6 +51,8 @@ def _hazards(
         return [(args[0], 0.0, float("inf"), True, "logarithm of a number that is not positive")]
     if op in ("asin", "acos"):
         return [(args[0], -1.0, 1.0, False, f"{op} of a number beyond 1")]
+    if op == "tan":
+        return [(args[0], 0.0, 0.0, False, "tangent at a pole")]
     if op == "div":
         return [(args[1], 0.0, 0.0, True, "division by zero")]
     if op == "reading":
@@ -72,6 +74,8 @@ def _outside(
     found = search(runner, obligation, False, Effort(1e-3, CELLS, until))
     values = {_value(runner, names, p): p for p in (found.lowest, found.highest)}
     margin = 1e-12 * max([1e-300, *(abs(v) for v in values if abs(v) < float("inf"))])
+    if low == high and not strict:
+        return _pole(runner, names, [v.name for v in obligation.variables if v.listed], values)
     if low == high:  # a zero to be avoided: taken, or passed between two points of opposite sign
         listed = [v.name for v in obligation.variables if v.listed]
         return _zero(runner, names, listed, values)
@@ -88,15 +92,30 @@ def _zero(runner: Runner, names: list[str], listed: list[str], values: dict[floa
     a, b = values[least], values[most]
     if not (-float("inf") < least < 0 < most < float("inf")) or any(a[n] != b[n] for n in listed):
         return None
+    return _between(runner, names, a, b, 0.0)
+
+
+def _between(runner: Runner, names: list[str], a: Point, b: Point, value: float) -> Point:
+    """A point between two where the argument is near a value it passes."""
     low, high = Fraction(0), Fraction(1)
     for _ in range(50):
         share = (low + high) / 2
         point = {n: a[n] + share * (b[n] - a[n]) for n in names}
-        if _value(runner, names, point) < 0:
+        if _value(runner, names, point) < value:
             low = share
         else:
             high = share
     return point
+
+
+def _pole(runner: Runner, names: list[str], listed: list[str], values: dict[float, Point]) -> Point | None:
+    """A point where the argument passes an odd multiple of a quarter turn."""
+    least, most = min(values), max(values)
+    a, b = values[least], values[most]
+    if not (-float("inf") < least and most < float("inf")) or any(a[n] != b[n] for n in listed):
+        return None
+    pole = (np.ceil(least / np.pi - 0.5) + 0.5) * np.pi
+    return _between(runner, names, a, b, pole) if least < pole < most else None
 
 
 def _value(runner: Runner, names: list[str], point: Point) -> float:

@@ -182,7 +182,9 @@ def _examine(runner: Runner, boxes: _Boxes, part: Any, best: tuple[_Best, _Best]
     boxes.plain[part] = np.stack([run.low, run.high, at.low[2 * n :] - plain, at.high[2 * n :] + plain], axis=1)
     best[0].offer(_known(at.low[:n]), part, choice[:n])
     best[1].offer(_known(-at.high[n : 2 * n]), part, choice[n:])
-    span = np.maximum(np.abs(face.gradient_low), np.abs(face.gradient_high)) * radius
+    with np.errstate(invalid="ignore"):  # an infinite slope over an edge of no width
+        span = np.maximum(np.abs(face.gradient_low), np.abs(face.gradient_high)) * radius
+    span = np.where(radius > 0, span, 0.0)
     return np.maximum(span[:n], span[n:])
 
 

@@ -16,7 +16,7 @@ from ..checker.statement import read_statement
 from ..claim import Claim
 
 DIGITS = 25
-SHORT = 40
+SHORT, EXACT = 40, 400
 RATIONAL_CELLS = 64
 RATIONAL_TERMS = 400
 IRRATIONAL = frozenset(
@@ -52,7 +52,7 @@ class Writer:
         """A point as a witness: rationals, and ranks in finite lists."""
         at = {}
         for v in self.derivation.meaning(proves, self.domain(on)).variables:
-            x = point[v.name]
+            x = point[v.name] if v.listed else min(max(point[v.name], v.inside[0]), v.inside[1])
             rank = next((k for k, c in enumerate(v.cells) if c[0] <= x <= c[1]), 0)
             at[v.name] = f"#{rank}" if v.listed else str(x)
         return at
@@ -75,7 +75,8 @@ class Writer:
         self, rule: str, proves: str, witness: dict[str, Any], ends: tuple[Fraction, Fraction], on: int | None
     ) -> int:
         """Appends a range or point line whose ends were measured; returns its number."""
-        low, high = _down(ends[0]), _up(ends[1])
+        limit = SHORT if witness["bits"] else EXACT  # what was measured without rounding stays so
+        low, high = _down(ends[0], limit), _up(ends[1], limit)
         uses = [] if on is None else [on]
         concludes = {"lower": low[0], "upper": high[0]}
         line = {"rule": rule, "proves": proves, "uses": uses, "witness": witness, "concludes": concludes}
@@ -112,12 +113,12 @@ class Writer:
         return meaning, Evaluator(self.derivation.terms, meaning.root, meaning.by, names, libraries, arithmetic)
 
 
-def _down(q: Fraction) -> tuple[str, Fraction]:
-    return _short(q) or _read(decimal_down(q, DIGITS))
+def _down(q: Fraction, limit: int = EXACT) -> tuple[str, Fraction]:
+    return _short(q, limit) or _read(decimal_down(q, DIGITS))
 
 
-def _up(q: Fraction) -> tuple[str, Fraction]:
-    return _short(q) or _read(decimal_up(q, DIGITS))
+def _up(q: Fraction, limit: int = EXACT) -> tuple[str, Fraction]:
+    return _short(q, limit) or _read(decimal_up(q, DIGITS))
 
 
 def upward(q: Fraction) -> str:
@@ -129,11 +130,11 @@ def downward(q: Fraction) -> str:
     return _down(q)[0]
 
 
-def _short(q: Fraction) -> tuple[str, Fraction] | None:
-    if q.numerator.bit_length() + q.denominator.bit_length() > 4 * SHORT:
+def _short(q: Fraction, limit: int) -> tuple[str, Fraction] | None:
+    if q.numerator.bit_length() + q.denominator.bit_length() > 4 * limit:
         return None
     text = str(q)
-    return (text, q) if len(text) <= SHORT else None
+    return (text, q) if len(text) <= limit else None
 
 
 def _read(text: str) -> tuple[str, Fraction]:
