@@ -100,6 +100,7 @@ EXTRA
     ("log(v + 1)", "", "logarithm"),
     ("tan(2*v)", "", "tangent at a pole"),
     ("asin(2*v)", "", "asin of a number beyond 1"),
+    ("v/2", "[[require]]\nthat = 'value(log(v))'", "logarithm"),
     ("abs(v)/2", "", "abs cannot be proved yet"),
     ("v/2", "horizon = 2", "horizon"),
     ("v/2", "[[require]]\nthat = 'push(v) >= 1'", "push cannot be proved yet"),

@@ -17,6 +17,7 @@ from .bounding.evaluate import Runner, to_float
 from .bounding.search import Effort, Found, Point, search
 from .certificate.certificate import Certificate, sealed
 from .certificate.lines import Writer, downward, upward
+from .certificate.remarks import Remarks, Search
 from .certificate.results import assembled
 from .checker import Verdict, check
 from .checker.reals import Undefined
@@ -31,11 +32,6 @@ BITS = 72
 SHARPER = 1e-2  # factor on the gap when an undecided requirement is pursued
 FINEST = 1e-11
 COARSE = 0.03
-STOPS = {
-    "cells": "stopped at the limit of cells",
-    "seconds": "stopped at the limit of seconds",
-    "precision": "stopped at the precision of the search",
-}
 TARGET_GAP = 1e-8  # the largest ball must be known to 1e-6: proofs/invariant-set.md (4)
 Watch = Callable[[str, int, float], None]
 
@@ -51,6 +47,8 @@ class Proved:
     line: int
     lower: Fraction
     upper: Fraction
+    least: Fraction  # the smallest and the largest value surely taken
+    most: Fraction
     stopped: str
 
 
@@ -101,7 +99,7 @@ class Attempt:
     def __init__(self, claim: Claim, gap: float, until: float, watch: Watch) -> None:
         self.claim, self.gap, self.until, self.watch = claim, gap, until, watch
         self.obligations, self.writer = Obligations(claim), Writer(claim)
-        self.interrupted = False
+        self.interrupted = self.near_region = False
         self.limits: dict[str, str] = {}
         self._runners: dict[tuple[int, str], Runner] = {}
 
@@ -109,7 +107,7 @@ class Attempt:
         """The certificate, and whether a smaller gap may still decide a requirement."""
         s, w, o = self.obligations.state, self.writer, self.obligations
         target = self.enclose(o.target(), None, points=True, gap=min(self.gap, TARGET_GAP))
-        region, inner = o.region()
+        region, inner = w.derivation.region()
         if target is None:
             raise ClaimError.of(
                 self.claim.place,
@@ -138,7 +136,8 @@ class Attempt:
             if r.kind in ("value", "sensitivity"):
                 self.enclose(o.requirement(number, domain), on, points=True)
         results = Results(w.proof)
-        remarks = [self._remark(n, results) for n in range(1, len(self.claim.requirements) + 1)]
+        state = Search(self.limits, self.interrupted, self.near_region)
+        remarks = Remarks(self.claim, o, results, state, lambda: self._enough(results)).all()
         text = assembled(self.claim, results, remarks)
         return sealed(self.claim, text, w.pruned(results.needed), self.interrupted), any(p for _, p in remarks)
 
@@ -151,7 +150,8 @@ class Attempt:
                     line = self.writer.theorem("invariant-region", "invariant", [target.line, image.line], {})
                     return Domain("region", Fraction(0), ball.target), line
                 except Rejected:
-                    continue
+                    low, high = self.obligations.region()[1]
+                    self.near_region = low <= image.least and image.most <= high
         return ball, on
 
     def _slope_route(self, domain: Domain, on: int) -> int | None:
@@ -217,7 +217,9 @@ class Attempt:
         if points:
             self._write_points(name, [t for t in taken if t], magnitude, bits, on)
         concluded = w.proof.lines[line].concludes
-        return Proved(line, concluded["lower"], concluded["upper"], found.stopped)
+        low, high = concluded["lower"], concluded["upper"]
+        least, most = min((t[1][1] for t in taken if t), default=high), max((t[1][0] for t in taken if t), default=low)
+        return Proved(line, low, high, least, most, found.stopped)
 
     def _search(self, obligation: Obligation, magnitude: bool, gap: float, floor: float = 0.0) -> Found:
         key = obligation.root, obligation.by
@@ -284,71 +286,17 @@ class Attempt:
                     f"[{float(region[0]):.6g}, {float(region[1]):.6g}]; widen the region or narrow the held quantities",
                 )  # fmt: skip
 
-    def _remark(self, number: int, results: Results) -> tuple[str | None, bool]:
-        """What limits a requirement, for people; and whether a smaller gap may decide it."""
-        r, outcome = self.claim.requirements[number - 1], results.requirements[number - 1]
-        parts: list[str] = []
-        left = self.obligations.leaves_out(r)
-        if left:
-            parts.append(f"over leaves out values of {', '.join(left)} that occur")
-        elif results.derivation.leaves_out(results.statement.requirements[number - 1]):
-            parts.append("over sets a defined name free: its own expression is not used")
-        pursue = False
-        if outcome.verdict == "undecided":
-            ranged = r.kind in ("value", "sensitivity")
-            names = [f"require[{number}]"] if ranged else [n for n in self.limits if not n.startswith("require")]
-            parts += [f"{n}: {STOPS.get(x, x)}" for n in names if (x := self.limits.get(n, ""))]
-            if self.interrupted:
-                parts.append("interrupted")
-            pursue = self._open(results, outcome.value, r.kind)
-            if not results.settled and r.kind in (
-                "settles",
-                "bound",
-                "radius",
-                "value",
-                "sensitivity",
-                "gain",
-                "residual",
-            ):
-                parts.append("no set that is mapped into itself was found" + self._size_that_would_do(results))
-            elif results.gain.upper is None and not ranged:
-                parts.append("no finite gain and residual were shown")
-            elif r.kind == "settles":
-                short = (
-                    "the gain is not below 1"
-                    if results.bound is None
-                    else "the bound is not below the radius of the set"
-                )
-                parts.append(short + self._size_that_would_do(results))
-            elif not parts or pursue:
-                parts.append("the constant lies between what is proved and what is attained")
-        return ("; ".join(parts)[:900] or None), pursue
-
-    def _open(self, results: Results, value: object, kind: str) -> bool:
-        """Whether ends proved and attained leave room: only then does a smaller gap help."""
-        if kind in ("value", "sensitivity"):
-            return results.settled
-        g, e = results.gain, results.residual
-        spans = [x for x in (g, e) if x.lower is not None and x.upper is not None]
-        return any(x.upper - x.lower > Fraction(FINEST) * x.upper for x in spans if x.upper and x.lower is not None)
-
-    def _size_that_would_do(self, results: Results) -> str:
-        """An estimate of the region that would carry a bound, for a region too small."""
+    def _enough(self, results: Results) -> float | None:
+        """An estimate of the radius that would carry a bound, for a region too small (nothing proved)."""
         if results.residual.upper is None or results.gain.upper is None or self.interrupted:
-            return ""
+            return None
         target = (results.centre.lower or Fraction(0), results.centre.upper or Fraction(0))
 
         def gain(radius: float) -> float:
-            domain = Domain("ball", Fraction(radius), target)
-            obligation = self.obligations.slope(domain)
-            found = self._search(obligation, True, 1e-2)
+            found = self._search(self.obligations.slope(Domain("ball", Fraction(radius), target)), True, 1e-2)
             return max(abs(found.upper), abs(found.lower))
 
-        r = enough_radius(to_float(results.radius.lower or Fraction(0)), gain, to_float(results.residual.upper))
-        if r is None:
-            return "; no larger region was found that would do"
-        low, high = float(target[0]) - r, float(target[1]) + r
-        return f"; a region of [{low:.4g}, {high:.4g}] would do (an estimate, not proved)"
+        return enough_radius(to_float(results.radius.lower or Fraction(0)), gain, to_float(results.residual.upper))
 
 
 def _close(

@@ -8,7 +8,7 @@ from fractions import Fraction
 import numpy as np
 
 from ..claim.model import Claim
-from ..claim.obligations import Obligation, Obligations
+from ..claim.obligations import Domain, Obligation, Obligations
 from ..stepmap.symbolic import compiled
 from .evaluate import Runner, to_float
 from .search import Effort, Point, search
@@ -25,6 +25,10 @@ def undefined_point(claim: Claim) -> tuple[str, str] | None:
     o = Obligations(claim)
     s = o.state
     roots = [(f"next.{s}", o.image()), (f"target.{s}", o.target())]
+    region = Domain("region", Fraction(0), (Fraction(0), Fraction(0)))
+    for number, r in enumerate(claim.requirements, 1):
+        if r.kind == "value" and not r.over:
+            roots.append((f"require[{number}]", o.requirement(number, region)))
     until = time.monotonic() + SECONDS
     seen: set[tuple[str, int]] = set()
     for place, obligation in roots:

@@ -1,0 +1,112 @@
+"""What limits a requirement, said to people, and whether a smaller gap may still decide it. Nothing here is proved."""
+
+from __future__ import annotations
+
+from collections.abc import Callable
+from dataclasses import dataclass
+from fractions import Fraction
+from functools import cached_property
+
+from ..checker.results import Results
+from ..claim import Claim
+from ..claim.constants import constant
+from ..claim.obligations import Obligations
+
+STOPS = {
+    "cells": "stopped at the limit of cells",
+    "seconds": "stopped at the limit of seconds",
+    "precision": "stopped at the precision of the search",
+}
+
+
+@dataclass(frozen=True, slots=True)
+class Search:
+    """How the search ended: what stopped it, an obligation; whether Ctrl-C did; whether the region is nearly mapped
+    into itself as far as points tell."""
+
+    limits: dict[str, str]
+    interrupted: bool
+    near_region: bool
+
+
+@dataclass(frozen=True)
+class Remarks:
+    """Remarks on the requirements of a claim; `enough` estimates the radius that would carry a bound."""
+
+    claim: Claim
+    obligations: Obligations
+    results: Results
+    search: Search
+    enough: Callable[[], float | None]
+
+    def all(self) -> list[tuple[str | None, bool]]:
+        """A remark (or none) and whether to pursue, a requirement."""
+        return [self.remark(n) for n in range(1, len(self.claim.requirements) + 1)]
+
+    def remark(self, number: int) -> tuple[str | None, bool]:
+        """What limits a requirement, for people; and whether a smaller gap may decide it."""
+        results = self.results
+        r, outcome = self.claim.requirements[number - 1], results.requirements[number - 1]
+        parts: list[str] = []
+        left = self.obligations.leaves_out(r)
+        if left:
+            parts.append(f"over leaves out values of {', '.join(left)} that occur")
+        elif results.derivation.leaves_out(results.statement.requirements[number - 1]):
+            parts.append("over sets a defined name free: its own expression is not used")
+        pursue = False
+        if outcome.verdict == "undecided":
+            ranged = r.kind in ("value", "sensitivity")
+            names = [f"require[{number}]"] if ranged else [n for n in self.search.limits if not n.startswith("require")]
+            parts += [f"{n}: {STOPS.get(x, x)}" for n in names if (x := self.search.limits.get(n, ""))]
+            if self.search.interrupted:
+                parts.append("interrupted")
+            pursue = self.open(number)
+            if not results.settled:
+                parts.append("no set that is mapped into itself was found" + self.size_that_would_do)
+            elif results.gain.upper is None and not ranged:
+                parts.append("no finite gain and residual were shown")
+            elif r.kind == "settles":
+                why = "gain is not below 1" if results.bound is None else "bound is not below the radius of the set"
+                parts.append(f"the {why}" + self.size_that_would_do)
+            elif not parts or pursue:
+                parts.append("the constant lies between what is proved and what is attained")
+        return ("; ".join(parts)[:900] or None), pursue
+
+    def open(self, number: int) -> bool:
+        """Whether what is proved and what is attained leave room for the answer: only then does a smaller gap help."""
+        results = self.results
+        r, outcome = self.claim.requirements[number - 1], results.requirements[number - 1]
+        k, e, radius = results.gain, results.residual, results.radius.lower
+        if r.kind in ("value", "sensitivity") and outcome.value is not None and outcome.attained is not None:
+            wanted = r.constant
+            ends = [(outcome.attained.upper, outcome.value.upper), (outcome.value.lower, outcome.attained.lower)]
+            if wanted is not None and any(_between(constant(wanted, self.claim.values), *x) for x in ends):
+                return True
+        if None in (k.lower, k.upper, e.lower, e.upper, radius):
+            return False
+        if not results.settled:
+            return self.search.near_region or k.lower * radius + e.lower <= radius  # type: ignore[operator]
+        if r.kind == "settles" or (r.kind == "bound" and results.bound is None):
+            return k.lower < 1 and e.lower < radius * (1 - k.lower)  # type: ignore[operator]
+        span = {"gain": k, "residual": e, "bound": results.bound}.get(r.kind)
+        wanted = r.constant
+        if span is None or wanted is None:
+            return False
+        return _between(constant(wanted, self.claim.values), span.lower, span.upper)
+
+    @cached_property
+    def size_that_would_do(self) -> str:
+        """What is known of a region that would do, to end a sentence with."""
+        results = self.results
+        if results.residual.upper is None or results.gain.upper is None or self.search.interrupted:
+            return ""
+        r = self.enough()
+        if r is None:
+            return "; no larger region was found that would do"
+        low, high = float(results.centre.lower or 0) - r, float(results.centre.upper or 0) + r
+        return f"; a region of [{low:.4g}, {high:.4g}] would do (an estimate, not proved)"
+
+
+def _between(c: tuple[Fraction, Fraction], low: Fraction | None, high: Fraction | None) -> bool:
+    """Whether a constant may lie between two ends."""
+    return low is not None and high is not None and low <= c[1] and c[0] <= high and low < high
