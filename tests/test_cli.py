@@ -172,6 +172,23 @@ def test_an_old_certificate_stays_when_the_claim_is_bad(tmp_path: Path) -> None:
     assert run("prove", EXAMPLES / "pendulum.toml", "-o", tmp_path).returncode == 2
 
 
+def test_no_work_is_overwritten(tmp_path: Path) -> None:
+    claim = tmp_path / "c.toml"
+    claim.write_text(BASE.replace("NEXT", "v/2").replace("EXTRA", ""))
+    before = claim.read_text()
+    done = run("prove", claim, "-o", claim)
+    assert done.returncode == 2 and "is the claim" in done.stderr and claim.read_text() == before
+    (tmp_path / "demo").mkdir()
+    mine = tmp_path / "demo" / "pendulum.toml"
+    mine.write_text("mine")
+    assert run("demo", "-o", tmp_path / "demo").returncode == 0 and mine.read_text() == "mine"
+
+
+def test_a_folder_that_cannot_be_written_is_said(tmp_path: Path) -> None:
+    done = run("prove", EXAMPLES / "pendulum.toml", "-o", tmp_path / "none" / "c.json")
+    assert done.returncode == 2 and "Traceback" not in done.stderr and "none" in done.stderr
+
+
 def test_a_closed_pipe_is_neither_0_nor_1(certificate: Path) -> None:
     code = f"""
 import subprocess, sys

@@ -145,3 +145,49 @@ v = "0.2*h"
         assert np.all(np.abs(v) <= 1 + 1e-12) if low < high else np.all(np.abs(v - 0.2 * h) <= radius + 1e-12)
     assert np.abs(v - 0.2 * h).max() <= bound + 1e-9
     assert math.isfinite(bound)
+
+
+@pytest.mark.parametrize("by, exact", [
+    ("foot", lambda v, T, k: -np.sinh(T) * (1 + 0.2 * (np.cosh(T) * v - np.sinh(T) * (0.3 * v + k * (v - 0.1) + 0.05 * T * v)))),
+    ("shift", lambda v, T, k: -np.sinh(T) * (1 + 0.2 * (np.cosh(T) * v - np.sinh(T) * (0.3 * v + k * (v - 0.1) + 0.05 * T * v)))),
+    ("kappa", lambda v, T, k: -np.sinh(T) * (v - 0.1) * (1 + 0.2 * (np.cosh(T) * v - np.sinh(T) * (0.3 * v + k * (v - 0.1) + 0.05 * T * v)))),
+    ("reach", lambda v, T, k: -np.sinh(T) * (1 + 0.2 * (np.cosh(T) * v - np.sinh(T) * (0.3 * v + k * (v - 0.1) + 0.05 * T * v)))),
+    ("c", lambda v, T, k: 0 * v),
+])  # fmt: skip
+def test_sensitivities_follow_what_is_built_on_a_name_and_cut_what_it_is_built_from(by: str, exact: Any) -> None:
+    """y = cosh T v − sinh T foot, next = y + 0.1 y²; foot = reach + shift; reach from a library that is bilinear itself."""
+    rows = "speed,period,reach\n" + "".join(
+        f"{v},{T},{0.3 * v + 0.05 * T * v:.4f}\n".replace("-0.0000", "0.0") for v in (-1, 0, 2) for T in (0, 0.5, 1)
+    )
+    text = f"""
+format = 1
+[constants]
+c = 2
+[gains]
+kappa = 0.4
+[state]
+v = [-0.5, 0.5]
+[uncertain]
+T = [0.2, 0.7]
+[[library]]
+file = "g.csv"
+at = {{ speed = "v", period = "T" }}
+[define]
+shift = "kappa*(v - target(v))"
+foot = "reach + shift"
+y = "cosh(T)*v - sinh(T)*foot"
+[next]
+v = "y + 0.1*y*y"
+[target]
+v = 0.1
+[[require]]
+that = "sensitivity(v, {by})"
+over = {{ T = [0.2, 0.7], v = [-0.5, 0.5] }}
+"""
+    (entry,) = proved(text, data={"g.csv": rows}).results["requirements"]
+    v, T = np.meshgrid(np.linspace(-0.5, 0.5, 201), np.linspace(0.2, 0.7, 201))
+    samples = exact(v, T, 0.4)
+    low, high = (float(x) for x in ends(entry["value"]))
+    assert entry["verdict"] == "proved"
+    assert low <= samples.min() + 1e-12 and samples.max() <= high + 1e-12
+    assert high - low <= (samples.max() - samples.min()) * 1.005 + 5e-3

@@ -62,14 +62,18 @@ def demo(folder: str) -> None:
     """Write the example claims into a folder and prove the main one. Exit status as for prove."""
     from importlib import resources
 
+    from .certificate.certificate import write_whole
+
     home = Path(folder)
     home.mkdir(parents=True, exist_ok=True)
     for item in sorted(resources.files("ultibound.examples").iterdir(), key=lambda f: f.name):
         if item.name.endswith((".toml", ".csv")):
-            from .certificate.certificate import write_whole
-
-            write_whole(home / item.name, item.read_bytes())
-            click.echo(f"wrote {home / item.name}", err=True)
+            target, data = home / item.name, item.read_bytes()
+            if target.exists() and target.read_bytes() != data:
+                click.echo(f"kept {target}, which you changed", err=True)
+                continue
+            write_whole(target, data)
+            click.echo(f"wrote {target}", err=True)
     main_claim = home / "walking.toml"
     click.echo(f"proving {main_claim}: the same as `ultibound prove {main_claim}`", err=True)
     sys.exit(_prove(main_claim, None, {}, False))
@@ -112,6 +116,8 @@ def _prove(path: Path, output: Path | None, settings: dict[str, str], as_json: b
         target = output or path.with_name(f"{path.stem}.cert.json")
         if target.is_dir():
             raise IsADirectoryError(21, "is a directory; name a file for the certificate", str(target))
+        if target.exists() and any(target.samefile(path.parent / f) for f in (path.name, *claim.data)):
+            raise FileExistsError(17, "is the claim or its data; name another file for the certificate", str(target))
         with Progress() as progress:
             certificate = proved(claim, progress)
         certificate.write(target)
