@@ -100,6 +100,7 @@ EXTRA
     ("log(v + 1)", "", "logarithm"),
     ("tan(2*v)", "", "tangent at a pole"),
     ("asin(2*v)", "", "asin of a number beyond 1"),
+    ("v/2 + a*b*c", "", "combinations"),
     ("v/2", "[[require]]\nthat = 'value(log(v))'", "logarithm"),
     ("abs(v)/2", "", "abs cannot be proved yet"),
     ("v/2", "horizon = 2", "horizon"),
@@ -109,6 +110,10 @@ def test_what_cannot_be_used_is_said_in_one_line(next_: str, extra: str, said: s
     claim = tmp_path / "c.toml"
     text = BASE.replace("NEXT", next_)
     text = extra + "\n" + text.replace("EXTRA", "") if extra.startswith("horizon") else text.replace("EXTRA", extra)
+    many = ", ".join(str(k) for k in range(200))
+    text = text.replace(
+        "[next]", f"a = {{ values = [{many}] }}\nb = {{ values = [{many}] }}\nc = {{ values = [{many}] }}\n[next]"
+    )
     claim.write_text(text)
     done = run("prove", claim)
     assert done.returncode == 2, done

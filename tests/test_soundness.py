@@ -139,7 +139,7 @@ v = "0.2*h"
         choices = generator.uniform(-0.5, 0.5, (12, size))
         choices[0], choices[1] = -0.5, 0.5
         moves = np.clip(h + generator.choice([-0.02, 0.02], (12, size)), -0.4, 0.4)
-        after = step(v, choices, h)
+        after = step(v, choices, h) + 0 * choices
         worst = np.argmax(np.abs(after - 0.2 * moves), axis=0)
         v, h = after[worst, np.arange(size)], moves[worst, np.arange(size)]
         assert np.all(np.abs(v) <= 1 + 1e-12) if low < high else np.all(np.abs(v - 0.2 * h) <= radius + 1e-12)
@@ -191,3 +191,43 @@ over = {{ T = [0.2, 0.7], v = [-0.5, 0.5] }}
     assert entry["verdict"] == "proved"
     assert low <= samples.min() + 1e-12 and samples.max() <= high + 1e-12
     assert high - low <= (samples.max() - samples.min()) * 1.005 + 5e-3
+
+
+@pytest.mark.parametrize("axes", [1, 2, 3, 4])
+def test_libraries_of_one_to_four_axes(axes: int) -> None:
+    """A random table: values and slopes contain dense samples of scipy-free multilinear interpolation, and are tight."""
+    rng = np.random.default_rng(axes)
+    names = ["v", "p", "q", "r"][:axes]
+    nodes = [0.0, 0.4, 1.0]
+    table = rng.integers(-9, 10, (3,) * axes) / 10
+    index = np.array(np.meshgrid(*[range(3)] * axes, indexing="ij")).reshape(axes, -1).T
+    rows = ",".join(f"{n}_node" for n in names) + ",y\n"
+    rows += "".join(",".join([*(str(nodes[k]) for k in i), str(table[tuple(i)])]) + "\n" for i in index)
+    uncertain = "".join(f"{n} = [0.1, 0.9]\n" for n in names[1:]) or "unused = 0\n".replace("0", "[0, 0]")
+    at = ", ".join(f'{n}_node = "{n}"' for n in names)
+    claim = (
+        f'format = 1\n[state]\nv = [0.1, 0.9]\n[uncertain]\n{uncertain}[[library]]\nfile = "t.csv"\nat = {{ {at} }}\n'
+    )
+    claim += '[next]\nv = "0.5 + 0.05*y"\n[target]\nv = 0.5\n[[require]]\nthat = "value(y)"\n[[require]]\nthat = "sensitivity(v, v)"\n'
+    results = proved(claim, data={"t.csv": rows}).results
+    points = rng.uniform(0.1, 0.9, (20000, axes))
+
+    def interpolated(x: np.ndarray) -> np.ndarray:
+        cell = (x >= 0.4).astype(int)
+        low, width = np.where(cell, 0.4, 0.0), np.where(cell, 0.6, 0.4)
+        share, total = (x - low) / width, np.zeros(len(x))
+        for corner in np.ndindex(*(2,) * axes):
+            weight = np.prod([share[:, k] if c else 1 - share[:, k] for k, c in enumerate(corner)], axis=0)
+            total += weight * table[tuple(cell[:, k] + c for k, c in enumerate(corner))]
+        return total
+
+    step = np.zeros(axes)
+    step[0] = 1e-6
+    inside = np.abs(points[:, 0] - 0.4) > 2e-6
+    slope = 0.05 * (interpolated(points + step) - interpolated(points - step))[inside] / 2e-6
+    for entry, samples in zip(results["requirements"], (interpolated(points), slope), strict=True):
+        low, high = (float(x) for x in ends(entry["value"]))
+        assert entry["verdict"] == "proved"
+        assert low <= samples.min() + 1e-7 and samples.max() <= high + 1e-7
+        inner = ends(entry["attained"])
+        assert high - low <= 1.005 * float(inner[1] - inner[0]) + 1e-6

@@ -17,13 +17,13 @@ from .bounding.evaluate import Runner, to_float
 from .bounding.search import Effort, Found, Point, search
 from .certificate.certificate import Certificate, sealed
 from .certificate.lines import Writer, downward, upward
-from .certificate.remarks import Remarks, Search
+from .certificate.remarks import STOPS, Remarks, Search
 from .certificate.results import assembled
 from .checker import Verdict, check
 from .checker.reals import Undefined
 from .checker.results import Results
 from .checker.rules import Rejected
-from .claim import Claim, ClaimError
+from .claim import Bad, Claim, ClaimError
 from .claim.obligations import Domain, Obligation, Obligations, not_yet
 from .contraction import enough_radius
 from .stepmap.symbolic import compiled
@@ -62,16 +62,25 @@ def prove(claim: Claim, watch: Watch | None = None) -> Certificate:
     problem = not_yet(claim)
     if problem is not None:
         raise ClaimError.of(claim.place, *problem.split(": ", 1))
-    undefined = undefined_point(claim)
-    if undefined is not None:
-        raise ClaimError.of(claim.place, *undefined)
+    try:
+        undefined = undefined_point(claim)
+        if undefined is not None:
+            raise ClaimError.of(claim.place, *undefined)
+        return _proved(claim, watch or (lambda stage, leaves, high: None))
+    except Bad as why:
+        raise ClaimError.of(claim.place, "", str(why)) from None
+
+
+def _proved(claim: Claim, watch: Watch) -> Certificate:
+    """The certificate of a claim that can be used: tried at smaller gaps while that may decide a requirement."""
     gap = to_float(claim.gap)
     until = time.monotonic() + to_float(claim.seconds)
     while True:
-        attempt = Attempt(claim, gap, until, watch or (lambda stage, leaves, high: None))
+        attempt = Attempt(claim, gap, until, watch)
         certificate, pursue = attempt.certificate()
         gap *= SHARPER
-        if not pursue or gap < FINEST or attempt.interrupted or time.monotonic() > until:
+        cut = any(x in STOPS for x in attempt.limits.values())  # a smaller gap would meet the same limit
+        if cut or not pursue or gap < FINEST or attempt.interrupted or time.monotonic() > until:
             break
     verdict = _checked(certificate, attempt)
     if verdict.status != "valid":

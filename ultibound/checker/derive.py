@@ -6,11 +6,14 @@ import re
 from dataclasses import dataclass
 from fractions import Fraction
 from itertools import pairwise
+from math import prod
 
 from .grammar import constant
 from .model import Quantity, Range, Requirement, Statement
 from .ranges import Ends
 from .terms import Names, Terms
+
+MOST_CELLS = 1_000_000
 
 
 class Unprovable(Exception):
@@ -136,6 +139,8 @@ class Derivation:
                 outer, inner = self.range(quantity)
             cuts = [outer[0], *sorted(x for x in self.lines(name, root) if outer[0] < x < outer[1]), outer[1]]
             variables.append(Ranged(name, tuple(pairwise(cuts)), inner, False))
+        if prod(len(v.cells) for v in variables) > MOST_CELLS:
+            raise Unprovable(f"more than {MOST_CELLS} combinations of library cells and listed values")
         return Meaning(root, by, variables, on_set)
 
     def lines(self, name: str, root: int) -> set[Fraction]:

@@ -21,6 +21,7 @@ Box = list[Ends]
 Interval = Any  # a pair of whole numbers (Scaled) or of fractions (Exact)
 Arithmetic = Any  # Scaled or Exact
 RATIONAL = frozenset(["number", "variable", "mark", "neg", "add", "sub", "mul", "div", "power"])
+DEEPEST = 300
 SMOOTH = frozenset(["sqrt", "exp", "log", "sin", "cos", "tan", "asin", "acos", "atan", "sinh", "cosh", "tanh"])
 
 
@@ -364,17 +365,19 @@ def walk(evaluator: Evaluator, tops: list[tuple[Ends, ...]], trees: list[str]) -
     hull: Interval = None
     leaves = 0
     for top, tree in zip(tops, trees, strict=True):
-        waiting = [list(top)]
+        waiting = [(list(top), 0)]
         for token in tree.split(" "):
             if not waiting:
                 raise Undefined("a tree goes on after its last leaf")
-            box = waiting.pop()
+            box, depth = waiting.pop()
+            if depth > DEEPEST:
+                raise Undefined(f"a box bisected more than {DEEPEST} times")
             if token.isascii() and token.isdigit() and len(token) < 4 and int(token) < len(box):
                 low, high = box[int(token)]
                 halves = [list(box), list(box)]
                 halves[0][int(token)] = low, (low + high) / 2
                 halves[1][int(token)] = (low + high) / 2, high
-                waiting += [halves[1], halves[0]]
+                waiting += [(halves[1], depth + 1), (halves[0], depth + 1)]
                 continue
             part = enclose(evaluator, box, token)
             hull = part if hull is None else (min(hull[0], part[0]), max(hull[1], part[1]))

@@ -1,7 +1,7 @@
 """What the engineer states: the claim file, its expressions, gait libraries and requirements."""
 
-from .errors import ClaimError, Problem
+from .errors import Bad, ClaimError, Problem
 from .model import Claim
 from .read import parse_claim, read_claim
 
-__all__ = ["Claim", "ClaimError", "Problem", "parse_claim", "read_claim"]
+__all__ = ["Bad", "Claim", "ClaimError", "Problem", "parse_claim", "read_claim"]

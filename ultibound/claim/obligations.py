@@ -5,16 +5,19 @@ The checker derives the same list from the claim's text on its own; tests hold t
 
 from __future__ import annotations
 
-import itertools
 from collections.abc import Mapping
 from dataclasses import dataclass
 from fractions import Fraction
+from itertools import pairwise
+from math import prod
 
 from .constants import constant
+from .errors import Bad
 from .graph import CORNERS, Graph, Scope
 from .model import Claim, Quantity, Range, Requirement
 
 PROVABLE = ("settles", "gain", "residual", "bound", "radius", "sensitivity", "value")
+MOST_CELLS = 1_000_000
 Ends = tuple[Fraction, Fraction]
 
 
@@ -152,6 +155,8 @@ class Obligations:
         self, name: str, root: int, by: str = "", ranges: Mapping[str, tuple[Ends, Ends]] | None = None
     ) -> Obligation:
         variables = tuple(self._variable(v, root, ranges or {}) for v in self.graph.variables(root))
+        if prod(len(v.cells) for v in variables) > MOST_CELLS:
+            raise Bad(f"more than {MOST_CELLS} combinations of library cells and listed values; shorten the lists")
         reads = any(self.graph.gates[k].op == "reading" for k in self.graph.reached((root,)))
         return Obligation(name, root, by, variables, reads)
 
@@ -164,7 +169,7 @@ class Obligations:
         if not listed:
             (low, high), lines = cells[0], self._lines(name, root)
             ends = [low, *sorted(x for x in lines if low < x < high), high]
-            cells = tuple(itertools.pairwise(ends))
+            cells = tuple(pairwise(ends))
         return Variable(name, cells, inside, listed)
 
     def _lines(self, name: str, root: int) -> set[Fraction]:
