@@ -7,7 +7,7 @@ from pathlib import Path
 
 import pytest
 
-from tests.corpus import CASES
+from tests.corpus import CASES, Case
 from ultibound.checker.derive import Derivation
 from ultibound.checker.derive import Domain as CheckerDomain
 from ultibound.checker.rules import SHAPES, THEOREMS
@@ -36,8 +36,8 @@ def spelled_out(graph: list[tuple[str, tuple[int, ...], object]], root: int) -> 
 
 @pytest.mark.parametrize("case", PROVABLE, ids=lambda c: c.name[:40].encode("ascii", "replace").decode())
 @pytest.mark.parametrize("ball", [False, True])
-def test_both_lists_mean_the_same(case: object, ball: bool) -> None:
-    claim = parse_claim(case.text, case.settings, case.data, "c")  # type: ignore[attr-defined]
+def test_both_lists_mean_the_same(case: Case, ball: bool) -> None:
+    claim = parse_claim(case.text, case.settings, case.data, "c")
     o = Obligations(claim)
     d = Derivation(read_statement(claim.text, claim.settings, claim.data))
     target = (Fraction(1, 2), Fraction(1, 2))

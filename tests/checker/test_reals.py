@@ -11,7 +11,8 @@ from fractions import Fraction
 import mpmath
 import pytest
 
-from ultibound.checker.reals import Exact, Inexact, Scaled, Undefined
+from ultibound.checker.exact import Exact
+from ultibound.checker.reals import Inexact, Scaled, Undefined
 
 FUNCTIONS: dict[str, Callable[[mpmath.mpf], mpmath.mpf]] = {
     "sqrt": mpmath.sqrt, "exp": mpmath.exp, "log": mpmath.log, "sin": mpmath.sin, "cos": mpmath.cos, "tan": mpmath.tan,

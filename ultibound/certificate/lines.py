@@ -8,9 +8,10 @@ from itertools import product
 from typing import Any
 
 from ..checker.derive import Derivation, Domain, Meaning
+from ..checker.exact import Exact
 from ..checker.numerals import decimal_down, decimal_up
 from ..checker.ranges import Evaluator, walk
-from ..checker.reals import Exact, Scaled
+from ..checker.reals import Scaled
 from ..checker.rules import Line, Proof, place
 from ..checker.statement import read_statement
 from ..claim import Claim

@@ -82,12 +82,12 @@ class Remarks:
             ends = [(outcome.attained.upper, outcome.value.upper), (outcome.value.lower, outcome.attained.lower)]
             if wanted is not None and any(_between(constant(wanted, self.claim.values), *x) for x in ends):
                 return True
-        if None in (k.lower, k.upper, e.lower, e.upper, radius):
+        if k.lower is None or e.lower is None or radius is None:
             return False
         if not results.settled:
-            return self.search.near_region or k.lower * radius + e.lower <= radius  # type: ignore[operator]
+            return self.search.near_region or k.lower * radius + e.lower <= radius
         if r.kind == "settles" or (r.kind == "bound" and results.bound is None):
-            return k.lower < 1 and e.lower < radius * (1 - k.lower)  # type: ignore[operator]
+            return k.lower < 1 and e.lower < radius * (1 - k.lower)
         span = {"gain": k, "residual": e, "bound": results.bound}.get(r.kind)
         wanted = r.constant
         if span is None or wanted is None:

@@ -11,9 +11,10 @@ from fractions import Fraction
 from itertools import product
 from typing import Any
 
+from .exact import Exact
 from .library import Library
 from .numerals import decimal_down, decimal_up
-from .reals import Exact, Undefined
+from .reals import Undefined
 from .terms import Terms
 
 Ends = tuple[Fraction, Fraction]

@@ -1,4 +1,4 @@
-"""Outward-rounded arithmetic: whole numbers scaled by a power of two, and exact rationals (proofs/rounding.md).
+"""Outward-rounded arithmetic on whole numbers scaled by a power of two (proofs/rounding.md).
 
 An interval of `Scaled(bits)` is a pair (lo, hi) of whole numbers and means [lo, hi] / 2**bits. Every operation returns
 an interval that contains the exact result for all arguments in its operands.
@@ -395,64 +395,3 @@ class Scaled:
             y, error = (self._pi_at(p) >> 1) - 2 * y, 2 * error + 64
         low, high = self._rounded(y, error + 8, p)
         return max(x, low), high  # arcsin x >= x
-
-
-class Exact:
-    """Interval arithmetic on fractions without any rounding; irrational results are refused."""
-
-    bits = 0
-
-    def number(self, q: Fraction) -> tuple[Fraction, Fraction]:
-        return q, q
-
-    def between(self, low: Fraction, high: Fraction) -> tuple[Fraction, Fraction]:
-        return low, high
-
-    def ends(self, a: tuple[Fraction, Fraction]) -> tuple[Fraction, Fraction]:
-        return a
-
-    def neg(self, a: tuple[Fraction, Fraction]) -> tuple[Fraction, Fraction]:
-        return -a[1], -a[0]
-
-    def add(self, a: tuple[Fraction, Fraction], b: tuple[Fraction, Fraction]) -> tuple[Fraction, Fraction]:
-        return a[0] + b[0], a[1] + b[1]
-
-    def sub(self, a: tuple[Fraction, Fraction], b: tuple[Fraction, Fraction]) -> tuple[Fraction, Fraction]:
-        return a[0] - b[1], a[1] - b[0]
-
-    def mul(self, a: tuple[Fraction, Fraction], b: tuple[Fraction, Fraction]) -> tuple[Fraction, Fraction]:
-        products = (a[0] * b[0], a[0] * b[1], a[1] * b[0], a[1] * b[1])
-        return self._held(min(products), max(products))
-
-    def div(self, a: tuple[Fraction, Fraction], b: tuple[Fraction, Fraction]) -> tuple[Fraction, Fraction]:
-        if b[0] <= 0 <= b[1]:
-            raise Undefined("division by an interval that contains zero")
-        return self.mul(a, (1 / b[1], 1 / b[0]))
-
-    def power(self, a: tuple[Fraction, Fraction], n: int) -> tuple[Fraction, Fraction]:
-        low, high = a
-        if n % 2 == 0:
-            low, high = (Fraction(0) if low <= 0 <= high else min(abs(low), abs(high))), max(abs(low), abs(high))
-        for q in (low, high):
-            if max(q.numerator.bit_length(), q.denominator.bit_length()) * n > LARGEST:
-                raise Undefined("a fraction that long")
-        return low**n, high**n
-
-    def sqrt(self, a: tuple[Fraction, Fraction]) -> tuple[Fraction, Fraction]:
-        if a[0] < 0:
-            raise Undefined("root of an interval with negative values")
-        roots = [Fraction(isqrt(q.numerator), isqrt(q.denominator)) for q in a]
-        if roots[0] ** 2 != a[0] or roots[1] ** 2 != a[1]:
-            raise Inexact("an irrational root")
-        return roots[0], roots[1]
-
-    def _held(self, low: Fraction, high: Fraction) -> tuple[Fraction, Fraction]:
-        for q in (low, high):
-            if max(q.numerator.bit_length(), q.denominator.bit_length()) > LARGEST:
-                raise Undefined("a fraction that long")
-        return low, high
-
-    def _refuse(self, *_: object) -> tuple[Fraction, Fraction]:
-        raise Inexact("exact arithmetic has no irrational functions")
-
-    pi = exp = log = sin = cos = tan = asin = acos = atan = sinh = cosh = tanh = _refuse

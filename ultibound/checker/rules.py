@@ -8,9 +8,10 @@ from itertools import product
 from typing import Any
 
 from .derive import Derivation, Domain, Meaning, Unprovable
+from .exact import Exact
 from .numerals import read_number
 from .ranges import Ends, Evaluator, walk
-from .reals import Exact, Scaled, Undefined
+from .reals import Scaled, Undefined
 
 BITS = (24, 4096)
 SHAPES = {

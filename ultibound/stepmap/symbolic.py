@@ -19,7 +19,7 @@ UNARY = ("exp", "log", "sin", "cos", "tan", "asin", "acos", "atan", "sinh", "cos
 Expr = Any  # sympy ships no types
 
 
-class Reading(sympy.Function):  # type: ignore[misc]
+class Reading(sympy.Function):  # type: ignore[misc]  # sympy ships no types
     """A library column read at axis values: Reading(library, column, axes…, orders…), orders of derivatives."""
 
     def fdiff(self, argindex: int = 1) -> Expr:
