@@ -4,12 +4,11 @@ from __future__ import annotations
 
 from fractions import Fraction
 from itertools import pairwise
-from math import isqrt
 
-from .grammar import Expression
+from .grammar import Expression, Node, Refused, exact, powered
 from .model import Stance, Statement
 
-FOLDED_BITS = 2**17
+FOLDED = frozenset(["add", "sub", "mul", "div", "neg", "sqrt"])
 Term = tuple[str, tuple[int, ...], Fraction | str | None]
 
 
@@ -40,8 +39,11 @@ class Terms:
         if p == 0:
             return self.put("number", (), Fraction(1))
         known = self.all[base][2]
-        if self.all[base][0] == "number" and isinstance(known, Fraction) and size(known) * p <= FOLDED_BITS:
-            return self.put("number", (), known ** int(p))
+        if self.all[base][0] == "number" and isinstance(known, Fraction):
+            try:
+                return self.put("number", (), powered(known, p))
+            except Refused:
+                pass
         return base if p == 1 else self.put("power", (base,), p)
 
     def below(self, root: int) -> list[int]:
@@ -56,28 +58,12 @@ class Terms:
         return sorted({str(self.all[k][2]) for k in self.below(root) if self.all[k][0] == "variable"})
 
 
-def size(q: Fraction) -> int:
-    return max(q.numerator.bit_length(), q.denominator.bit_length())
-
-
 def fold(op: str, operands: list[Fraction]) -> Fraction | None:
-    a, b = operands[0], operands[-1]
-    if size(a) + size(b) > FOLDED_BITS:
+    """The rational an operation on rationals gives; None leaves it to interval arithmetic."""
+    try:
+        return exact(Node(op), operands) if op in FOLDED else None
+    except Refused:  # too long to be held exactly, or not defined
         return None
-    if op == "add":
-        return a + b
-    if op == "sub":
-        return a - b
-    if op == "mul":
-        return a * b
-    if op == "neg":
-        return -a
-    if op == "div" and b != 0:
-        return a / b
-    if op == "sqrt" and a >= 0:
-        p, q = isqrt(a.numerator), isqrt(a.denominator)
-        return Fraction(p, q) if p * p == a.numerator and q * q == a.denominator else None
-    return None
 
 
 class Names:

@@ -6,13 +6,14 @@ from collections.abc import Mapping
 from dataclasses import dataclass
 from fractions import Fraction
 from itertools import pairwise
-from math import isqrt
 
-from .expression import Expression
+from .constants import rational
+from .errors import Bad
+from .expression import Expression, Node
 from .model import Claim, Stance
 
 CORNERS = frozenset({"abs", "min", "max", "clip"})
-FOLDED_BITS = 2**17
+FOLDED = frozenset({"add", "sub", "mul", "div", "neg", "sqrt"})
 
 
 @dataclass(frozen=True, slots=True)
@@ -52,26 +53,22 @@ class Graph:
         if exponent == 0:
             return self.number(1)
         known = self.gates[base].value if self.gates[base].op == "number" else None
-        if known is not None and _bits(known) * exponent <= FOLDED_BITS:
-            return self.number(known ** int(exponent))
+        if known is not None:
+            try:
+                return self.number(rational(Node("power", value=exponent), [known]) or 0)
+            except Bad:
+                pass
         return base if exponent == 1 else self.add("power", base, value=exponent)
 
     def _folded(self, op: str, args: tuple[int, ...]) -> Gate | None:
-        operands = [self.gates[a].value for a in args if self.gates[a].op == "number"]
-        if not args or len(operands) < len(args) or None in operands:
+        operands = [q for a in args if self.gates[a].op == "number" and (q := self.gates[a].value) is not None]
+        if not args or len(operands) < len(args) or op not in FOLDED:
             return None
-        a, b = operands[0] or Fraction(0), operands[-1] or Fraction(0)
-        if _bits(a) + _bits(b) > FOLDED_BITS:
+        try:
+            value = rational(Node(op), operands)
+        except Bad:  # too long to be held exactly, or not defined: left to interval arithmetic
             return None
-        if op in ("add", "sub", "mul", "neg"):
-            return Gate("number", value={"add": a + b, "sub": a - b, "mul": a * b, "neg": -a}[op])
-        if op == "div" and b:
-            return Gate("number", value=a / b)
-        if op == "sqrt" and a >= 0:
-            top, low = isqrt(a.numerator), isqrt(a.denominator)
-            if top * top == a.numerator and low * low == a.denominator:
-                return Gate("number", value=Fraction(top, low))
-        return None
+        return None if value is None else Gate("number", value=value)
 
     def reached(self, roots: tuple[int, ...]) -> list[int]:
         """Gates the roots are built from, in order."""
@@ -87,10 +84,6 @@ class Graph:
     def variables(self, root: int) -> list[str]:
         """Names of the variables a gate depends on, sorted."""
         return sorted({self.gates[k].name for k in self.reached((root,)) if self.gates[k].op == "variable"})
-
-
-def _bits(q: Fraction) -> int:
-    return max(q.numerator.bit_length(), q.denominator.bit_length())
 
 
 class Scope:
