@@ -177,7 +177,9 @@ def test_a_line_retargeted_is_rejected(entries: dict[str, Any]) -> None:
             def spoil(e: dict[str, Any], number: int = number, name: str = name) -> None:
                 e["proof"][number]["proves"] = name
 
-            assert check(spoiled(entries, spoil)).status == "invalid", (number, name)
+            verdict = check(spoiled(entries, spoil))
+            assert verdict.status == "invalid", (number, name)
+            assert verdict.place.startswith(("proof", "results")) and verdict.reason, verdict
 
 
 def test_a_rule_or_use_exchanged_is_rejected(entries: dict[str, Any]) -> None:
@@ -340,6 +342,29 @@ def test_the_one_file_checker_agrees(entries: dict[str, Any], pyz: Path, tmp_pat
     assert bad.returncode == 1 and "results.gain.upper: more is claimed" in bad.stdout
     for data in (b"", b"{", b"\xff", b"[]", b"{}", b'{"format":"ultibound-certificate/2"}'):
         assert run(pyz, data, tmp_path).returncode == 2
+
+
+def test_spoiled_certificates_through_the_one_file_checker(pyz: Path, tmp_path: Path) -> None:
+    """Each number of one certificate moved so that it claims more, each line removed: the file says no, and why."""
+    entries = sample_pendulum()
+    spoilt: list[bytes] = []
+    for path, text in [*quantities(entries["results"], ("results",)), *quantities(entries["proof"], ("proof",))]:
+        more = {"lower": 1, "radius": 1}.get(path[-1], -1) * (-1 if "attained" in path else 1)
+        changed = copy.deepcopy(entries)
+        at(changed, path[:-1])[path[-1]] = moved(text, more)
+        spoilt.append(resealed(changed))
+    for gone in range(len(entries["proof"])):
+        changed = copy.deepcopy(entries)
+        del changed["proof"][gone]
+        spoilt.append(resealed(changed))
+    for setting in ({"kappa": "0.02"}, {"kappa": "0.3"}):
+        changed = copy.deepcopy(entries)
+        changed["claim"]["set"] = setting
+        spoilt.append(resealed(changed))
+    assert len(spoilt) > 60
+    for data in spoilt:
+        done, verdict = run(pyz, data, tmp_path), check(data)
+        assert done.returncode == 1 and done.stdout == f"INVALID: {verdict.place}: {verdict.reason}\n", done
 
 
 def test_the_one_file_checker_is_the_folder(pyz: Path) -> None:
