@@ -32,6 +32,7 @@ BITS = 72
 SHARPER = 1e-2  # factor on the gap when an undecided requirement is pursued
 FINEST = 1e-11
 COARSE = 0.03
+PATIENCE = 400  # leaves beyond which second derivatives pay
 TARGET_GAP = 1e-8  # the largest ball must be known to 1e-6: proofs/invariant-set.md (4)
 Watch = Callable[[str, int, float], None]
 
@@ -110,7 +111,7 @@ class Attempt:
         self.obligations, self.writer = Obligations(claim), Writer(claim)
         self.interrupted = self.near_region = False
         self.limits: dict[str, str] = {}
-        self._runners: dict[tuple[int, str], Runner] = {}
+        self._runners: dict[tuple[int, str, bool], Runner] = {}
 
     def certificate(self) -> tuple[Certificate, bool]:
         """The certificate, and whether a smaller gap may still decide a requirement."""
@@ -231,23 +232,30 @@ class Attempt:
         return Proved(line, low, high, least, most, found.stopped)
 
     def _search(self, obligation: Obligation, magnitude: bool, gap: float, floor: float = 0.0) -> Found:
-        key = obligation.root, obligation.by
-        if key not in self._runners:
-            names = [v.name for v in obligation.variables]
-            program = compiled(self.obligations.graph, obligation.root, obligation.by, names)
-            self._runners[key] = Runner(program, names, self.claim.libraries)
+        """Witnesses for a range; of a value that takes many leaves, with the second-order form."""
 
         def watch(leaves: int, high: float) -> None:
             self.watch(obligation.name, leaves, high)
 
-        def effort() -> Effort:
-            return Effort(gap, self.claim.cells, self.until, watch, floor)
+        def attempt(curved: bool) -> Found:
+            patience = 10**9 if curved or obligation.by else PATIENCE
+            effort = Effort(gap, self.claim.cells, self.until, watch, floor, patience)
+            return search(self._runner(obligation, curved), obligation, magnitude, effort)
 
         try:
-            return search(self._runners[key], obligation, magnitude, effort())
+            found = attempt(False)
+            return attempt(True) if found.stopped == "patience" else found
         except KeyboardInterrupt:
             self._interrupt()
-            return search(self._runners[key], obligation, magnitude, effort())
+            return attempt(False)
+
+    def _runner(self, obligation: Obligation, curved: bool) -> Runner:
+        key = obligation.root, obligation.by, curved
+        if key not in self._runners:
+            names = [v.name for v in obligation.variables]
+            program = compiled(self.obligations.graph, obligation.root, obligation.by, names, curved)
+            self._runners[key] = Runner(program, names, self.claim.libraries)
+        return self._runners[key]
 
     def _interrupt(self) -> None:
         """The first Ctrl-C stops every search where it is; the second one ends the program."""

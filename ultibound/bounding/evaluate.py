@@ -22,6 +22,7 @@ class Run:
     high: Floats
     gradient_low: Floats  # (boxes, variables)
     gradient_high: Floats
+    curvature: dict[tuple[int, int], Pair]
     split: Any
     branches: dict[int, Branch]
 
@@ -49,7 +50,7 @@ class Runner:
         """Runs every step over boxes [low, high] of shape (boxes, variables); `branches` fixes library cells."""
         count, wanted = len(low), [self.program.value, *self.program.checks]
         if gradient:
-            wanted += self.program.gradient.values()
+            wanted += [*self.program.gradient.values(), *self.program.curvature.values()]
         done: list[Pair] = []
         met: dict[int, Branch] = {}
         with np.errstate(all="ignore"):
@@ -71,10 +72,14 @@ class Runner:
                 if v in self.program.gradient:
                     pair = _finite(done[self.program.gradient[v]], count, defined)
                     g_low[:, column], g_high[:, column] = pair
+        bends = {
+            (self.variables.index(u), self.variables.index(v)): _finite(done[k], count, defined)
+            for (u, v), k in (self.program.curvature.items() if gradient else ())
+        }
         split = np.zeros(count, bool)
         for _, spans in met.values():
             split |= np.prod(spans, axis=0) > 1
-        return Run(*value, g_low, g_high, split, met)
+        return Run(*value, g_low, g_high, bends, split, met)
 
     def _step(self, step: Step, done: list[Pair], low: Floats, high: Floats) -> Pair:
         args = [done[a] for a in step.args]

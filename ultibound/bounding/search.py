@@ -16,13 +16,13 @@ from typing import Any
 import numpy as np
 
 from ..claim.obligations import Ends, Obligation
-from .evaluate import Runner, to_float
+from .evaluate import Run, Runner, to_float
 from .intervals import Floats
 
 BATCH = 4096
 SHARE = 0.6  # of the gap is for the search; the rest is for the checker's own way of evaluating
 NUDGE = 2**36  # a point at the end of a cell moves inside by this share of its box
-DIRECT, CENTRED, MONOTONE = "d", "c", "m"
+DIRECT, CENTRED, MONOTONE, SECOND = "d", "c", "m", "s"
 Point = dict[str, Fraction]
 
 
@@ -35,6 +35,7 @@ class Effort:
     until: float
     watch: Callable[[int, float], None] = lambda leaves, gap: None
     floor: float = 0.0  # an absolute gap that is enough
+    patience: int = 10**9  # leaves after which to give up, for a form that needs fewer
 
 
 @dataclass(frozen=True, slots=True)
@@ -60,7 +61,7 @@ class _Boxes:
     child: Any
     upper: Floats  # bounds by the best form
     lower: Floats
-    plain: Floats  # (boxes, 4): direct low, direct high, centred low, centred high
+    plain: Floats  # (boxes, 6): low and high, direct, centred, monotone
 
     def grow(self, low: Floats, high: Floats) -> None:
         n = len(low)
@@ -69,7 +70,7 @@ class _Boxes:
         self.child = np.concatenate([self.child, np.full(n, -1)])
         self.upper = np.concatenate([self.upper, np.full(n, np.inf)])
         self.lower = np.concatenate([self.lower, np.full(n, -np.inf)])
-        self.plain = np.concatenate([self.plain, np.tile([-np.inf, np.inf, -np.inf, np.inf], (n, 1))])
+        self.plain = np.concatenate([self.plain, np.tile([-np.inf, np.inf] * 3, (n, 1))])
 
 
 @dataclass
@@ -94,7 +95,7 @@ def search(runner: Runner, obligation: Obligation, magnitude: bool, effort: Effo
     low = np.array([[to_float(c[0]) for c in top] for top in tops]).reshape(shape)
     high = np.array([[to_float(c[1]) for c in top] for top in tops]).reshape(shape)
     none, ends, ranks = np.zeros(0), np.zeros((0, shape[1])), np.zeros(0, int)
-    boxes = _Boxes(ends, ends, ranks, ranks, none, none, np.zeros((0, 4)))
+    boxes = _Boxes(ends, ends, ranks, ranks, none, none, np.zeros((0, 6)))
     boxes.grow(low, high)
     widths = np.maximum(high.max(axis=0, initial=-np.inf) - low.min(axis=0, initial=np.inf), 1e-300)
     best = (_Best(1), _Best(-1))
@@ -118,6 +119,9 @@ def search(runner: Runner, obligation: Obligation, magnitude: bool, effort: Effo
             break
         if leaves + len(live) > effort.cells:
             stopped = "cells"
+            break
+        if leaves + len(live) > effort.patience + 4 * len(tops):
+            stopped = "patience"
             break
         if time.monotonic() > effort.until:
             stopped = "seconds"
@@ -179,13 +183,43 @@ def _examine(runner: Runner, boxes: _Boxes, part: Any, best: tuple[_Best, _Best]
     reach, plain = np.where(ok2, reach, np.inf), np.where(usable, plain, np.inf)
     boxes.upper[part] = np.fmin(np.fmin(run.high, face.high[:n]), at.high[:n] + reach[:n])
     boxes.lower[part] = np.fmax(np.fmax(run.low, face.low[n:]), at.low[n : 2 * n] - reach[n:])
-    boxes.plain[part] = np.stack([run.low, run.high, at.low[2 * n :] - plain, at.high[2 * n :] + plain], axis=1)
+    columns = [
+        run.low,
+        run.high,
+        at.low[2 * n :] - plain,
+        at.high[2 * n :] + plain,
+        boxes.lower[part],
+        boxes.upper[part],
+    ]
+    boxes.plain[part] = np.stack(columns, axis=1)
+    if run.curvature and not derivative:
+        low_s, high_s = _second_order(runner, run, low, high)
+        boxes.lower[part] = np.fmax(boxes.lower[part], low_s)
+        boxes.upper[part] = np.fmin(boxes.upper[part], high_s)
     best[0].offer(_known(at.low[:n]), part, choice[:n])
     best[1].offer(_known(-at.high[n : 2 * n]), part, choice[n:])
     with np.errstate(invalid="ignore"):  # an infinite slope over an edge of no width
         span = np.maximum(np.abs(face.gradient_low), np.abs(face.gradient_high)) * radius
     span = np.where(radius > 0, span, 0.0)
     return np.maximum(span[:n], span[n:])
+
+
+def _second_order(runner: Runner, run: Run, low: Floats, high: Floats) -> tuple[Floats, Floats]:
+    """proofs/forms.md (4); without bounds where a reading met several cells."""
+    centre, r = 0.5 * (low + high), 0.5 * (high - low)
+    at = runner(centre, centre)
+    linear = _reach(r, at.gradient_low, at.gradient_high)
+    down, up = at.low - linear, at.high + linear
+    with np.errstate(invalid="ignore"):
+        for (i, j), (least, most) in run.curvature.items():
+            area = r[:, i] * r[:, j]
+            spread = np.where(area > 0, np.maximum(np.abs(least), np.abs(most)) * area, 0.0)
+            if i == j:
+                down += 0.5 * np.where(area > 0, np.minimum(least, 0.0) * area, 0.0)
+                up += 0.5 * np.where(area > 0, np.maximum(most, 0.0) * area, 0.0)
+            else:
+                down, up = down - spread, up + spread
+    return np.where(run.split, -np.inf, down), np.where(run.split, np.inf, up)
 
 
 def _reach(radius: Floats, g_low: Floats, g_high: Floats) -> Floats:
@@ -210,7 +244,9 @@ def _found(
         lower = -upper
     within = (boxes.plain[:, 0] >= lower) & (boxes.plain[:, 1] <= upper)
     centred = (boxes.plain[:, 2] >= lower) & (boxes.plain[:, 3] <= upper)
-    form = np.where(within, DIRECT, np.where(centred, CENTRED, MONOTONE))
+    monotone = (boxes.plain[:, 4] >= lower) & (boxes.plain[:, 5] <= upper)
+    best_form = np.where(monotone, MONOTONE, SECOND)
+    form = np.where(within, DIRECT, np.where(centred, CENTRED, best_form))
     trees = tuple(_written(boxes, k, form) for k in range(len(tops)))
     points = [_point(obligation, tops, boxes, b) for b in best]
     return Found(trees, leaves, upper, lower, points[0], points[1], stopped)

@@ -50,6 +50,7 @@ class Evaluator:
         self.fixed: dict[int, Jet] = {}
         self.moving: list[int] = []
         self.several = False
+        self.direction: int | None = None  # a variable by which d is taken instead of the marked name
         self.branch: dict[int, list[range]] = {}
         self.touching = False
         self.axes: dict[int, Evaluator | None] = {}
@@ -67,12 +68,16 @@ class Evaluator:
         may be a face on a grid line. `touching` counts every closed cell that a box touches (proofs/attained.md).
         """
         self.several, self.touching = False, touching
-        if not (part and self.by):
+        if not (part and self.second()):
             self.branch = {}
         jets = dict(self.fixed)
         for k in self.moving:
             jets[k] = self.term(k, jets, box, gradient)
         return jets[self.root]
+
+    def second(self) -> bool:
+        """Whether derivatives of a derivative are carried."""
+        return bool(self.by) or self.direction is not None
 
     def wanted(self, jet: Jet) -> Interval:
         return (jet.d or self.zero) if self.by else jet.v
@@ -92,6 +97,8 @@ class Evaluator:
             jet = Jet(a.between(*box[i]))
             if gradient:
                 jet.g[i] = self.one
+            if i == self.direction:
+                jet.d = self.one
             return jet
         first = jets[args[0]]
         if op == "mark":
@@ -155,7 +162,7 @@ class Evaluator:
         jet = Jet(self.a.mul(x.v, y.v), plus(prod(x.d, y.v), prod(x.v, y.d)))
         for i in x.g | y.g:
             jet.g[i] = plus(prod(x.g.get(i), y.v), prod(x.v, y.g.get(i)))
-        for i in x.g | y.g if self.by else ():
+        for i in x.g | y.g if self.second() else ():
             second = plus(prod(x.dg.get(i), y.v), prod(x.d, y.g.get(i)), prod(x.g.get(i), y.d), prod(x.v, y.dg.get(i)))
             if second is not None:
                 jet.dg[i] = second
@@ -174,7 +181,7 @@ class Evaluator:
         jet = Jet(q, part(x.d, prod(q, y.d)))
         for i in x.g | y.g:
             jet.g[i] = part(x.g.get(i), prod(q, y.g.get(i)))
-            if self.by:
+            if self.second():
                 second = part(x.dg.get(i), prod(jet.g[i], y.d), prod(q, y.dg.get(i)), prod(jet.d, y.g.get(i)))
                 if second is not None:
                     jet.dg[i] = second
@@ -186,7 +193,7 @@ class Evaluator:
         for i, slope in x.g.items():
             jet.g[i] = self.prod(first, slope)
             twice = self.plus(self.prod(second, x.d, slope), self.prod(first, x.dg.get(i)))
-            if self.by and twice is not None:
+            if self.second() and twice is not None:
                 jet.dg[i] = twice
         return jet
 
@@ -254,7 +261,7 @@ class Evaluator:
         jet.d = self.plus(*(self.prod(slope[j], axes[j].d) for j in active))
         for i in {i for x in axes for i in x.g}:
             jet.g[i] = self.plus(*(self.prod(slope[j], axes[j].g.get(i)) for j in active))
-            if self.by and not several:
+            if self.second() and not several:
                 parts = [self.prod(slope[j], axes[j].dg.get(i)) for j in active]
                 for j, m in product(active, active):
                     if j != m and axes[j].d is not None and i in axes[m].g:
@@ -315,10 +322,10 @@ def met(grid: tuple[Fraction, ...], low: Fraction, high: Fraction, touching: boo
 
 
 def enclose(evaluator: Evaluator, box: Box, form: str) -> Interval:
-    """Range over a box by one form: d direct, c centred, m monotone (proofs/forms.md)."""
+    """Range over a box by one form: d direct, c centred, m monotone, s second order (proofs/forms.md)."""
     jet = evaluator.run(box, form != "d")
     low, high = evaluator.wanted(jet)
-    if form not in ("d", "c", "m"):
+    if form not in ("d", "c", "m", "s"):
         raise Undefined(f"unknown form {form!r}")
     if form == "d":
         return low, high
@@ -328,7 +335,35 @@ def enclose(evaluator: Evaluator, box: Box, form: str) -> Interval:
     if form == "c":
         c_low, c_high = centred(evaluator, box, slopes)
         return max(low, c_low), min(high, c_high)
-    return max(low, face(evaluator, box, slopes, -1)[0]), min(high, face(evaluator, box, slopes, 1)[1])
+    low, high = max(low, face(evaluator, box, slopes, -1)[0]), min(high, face(evaluator, box, slopes, 1)[1])
+    if form == "m" or evaluator.by:
+        return low, high
+    curved = second_order(evaluator, box)
+    return (low, high) if curved is None else (max(low, curved[0]), min(high, curved[1]))
+
+
+def second_order(evaluator: Evaluator, box: Box) -> Interval:
+    """Value and slopes at the centre, second derivatives over the box: proofs/forms.md (4). None across cells."""
+    a, half = evaluator.a, Fraction(1, 2)
+    radius = [(y - x) / 2 for x, y in box]
+    rest: Interval = evaluator.zero
+    for i, r in enumerate(radius):
+        if r:
+            evaluator.direction = i
+            row = evaluator.run(box, True).dg
+            if evaluator.several:
+                evaluator.direction = None
+                return None
+            for j in row:
+                if j == i:
+                    rest = a.add(rest, a.mul(row[j], a.between(Fraction(0), half * r * r)))
+                elif j > i:
+                    rest = a.add(rest, a.mul(row[j], a.between(-r * radius[j], r * radius[j])))
+    jet = evaluator.run([((x + y) / 2,) * 2 for x, y in box], True, part=True)
+    evaluator.direction = None
+    for i, slope in jet.g.items():
+        rest = a.add(rest, a.mul(slope, a.between(-radius[i], radius[i])))
+    return a.add(jet.v, rest)
 
 
 def centred(evaluator: Evaluator, box: Box, slopes: dict[int, Interval]) -> Interval:

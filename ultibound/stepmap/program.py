@@ -23,7 +23,8 @@ class Step:
 
 @dataclass
 class Program:
-    """`value` is the register of the wanted quantity, `gradient[v]` of its derivative by variable v (absent: 0).
+    """`value` is the register of the wanted quantity, `gradient[v]` of its derivative by variable v (absent: 0),
+    `curvature[u, v]` of its second derivatives where they were asked for.
 
     `checks` are registers of everything the claim's own text computes: where one of them has no finite range,
     the claim is not shown to be defined.
@@ -32,6 +33,7 @@ class Program:
     steps: list[Step] = field(default_factory=list)
     value: int = -1
     gradient: dict[str, int] = field(default_factory=dict)
+    curvature: dict[tuple[str, str], int] = field(default_factory=dict)
     checks: tuple[int, ...] = ()
     library: tuple[int, ...] = ()
     _number: dict[Hashable, int] = field(default_factory=dict, repr=False)

@@ -100,8 +100,11 @@ def chained(meaning: Expr, slope: dict[Expr, Expr]) -> Expr:
     return sympy.Add(*(sympy.diff(meaning, s) * slope[s] for s in met))
 
 
-def compiled(graph: Graph, root: int, by: str, variables: list[str]) -> Program:
-    """Program of a gate's value (or of its derivative by the marked name) and of its gradient."""
+def compiled(graph: Graph, root: int, by: str, variables: list[str], curved: bool = False) -> Program:
+    """Program of a gate's value (or of its derivative by the marked name) and of its gradient.
+
+    `curved` adds the second derivatives of the value.
+    """
     system = System(graph, root)
     rule, wanted = system.rule, system.symbol[root]
     if by:
@@ -121,6 +124,11 @@ def compiled(graph: Graph, root: int, by: str, variables: list[str]) -> Program:
         if slope != 0:
             _assign(program, extended, known)
             program.gradient[v] = _register(program, slope, known)
+            for u in variables[: variables.index(v) + 1] if curved else ():
+                twice, bend = differentiated(extended, slope, system.variable(u), f"y{u}")
+                if bend != 0:
+                    _assign(program, twice, known)
+                    program.curvature[u, v] = _register(program, bend, known)
     return program
 
 
