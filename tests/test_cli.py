@@ -241,3 +241,25 @@ def test_the_same_bytes_again(tmp_path: Path, certificate: Path) -> None:
     subprocess.run([*COMMAND, "prove", str(EXAMPLES / "pendulum.toml"), "-o", str(target)],
                    capture_output=True, env=environment, cwd=tmp_path, check=True)  # fmt: skip
     assert target.read_bytes() == certificate.read_bytes()
+
+
+@pytest.mark.parametrize("top, that, verdict, said", [
+    ("", "gain < 0.4", "refuted", None),
+    ('correction = ["half"]\n', "gain < 0.4", "undecided", "routes that use `correction` are not tried yet"),
+    ('correction = ["half"]\nroute = "slope"\n', "gain < 0.4", "refuted", None),
+    ("", "bound(v) < 0.001", "undecided", "orbits are not searched"),
+    ("", "gain <= 0.5", "proved", None),
+])  # fmt: skip
+def test_what_other_routes_might_do_is_not_refuted(
+    top: str, that: str, verdict: str, said: str | None, tmp_path: Path
+) -> None:
+    claim = tmp_path / "c.toml"
+    text = (
+        BASE.replace("NEXT", "0.25 + half + d")
+        .replace("EXTRA", f"[[require]]\nthat = '{that}'")
+        .replace("[next]", '[define]\nhalf = "v/2"\n[next]')
+    )
+    claim.write_text(top + text)
+    entry = json.loads(run("prove", claim, "--json").stdout)["requirements"][0]
+    assert entry["verdict"] == verdict
+    assert entry["limited_by"] is None if said is None else said in entry["limited_by"]

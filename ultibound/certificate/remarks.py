@@ -68,9 +68,25 @@ class Remarks:
             elif r.kind == "settles":
                 why = "gain is not below 1" if results.bound is None else "bound is not below the radius of the set"
                 parts.append(f"the {why}" + self.size_that_would_do)
+            elif self.beyond(number):
+                parts.append(
+                    "this route cannot do better, as attained values show; that is no refutation, since "
+                    + (
+                        "routes that use `correction` are not tried yet"
+                        if r.kind == "gain"
+                        else "orbits are not searched"
+                    )
+                )
             elif not parts or pursue:
                 parts.append("the constant lies between what is proved and what is attained")
         return ("; ".join(parts)[:900] or None), pursue
+
+    def beyond(self, number: int) -> bool:
+        """Whether attained values keep the slope route from ever proving an upper limit."""
+        r, value = self.claim.requirements[number - 1], self.results.requirements[number - 1].value
+        if r.kind not in ("gain", "residual", "bound") or r.constant is None or value is None or value.lower is None:
+            return False
+        return value.lower > constant(r.constant, self.claim.values)[1]
 
     def open(self, number: int) -> bool:
         """Whether what is proved and what is attained leave room for the answer: only then does a smaller gap help."""
