@@ -231,3 +231,68 @@ def test_libraries_of_one_to_four_axes(axes: int) -> None:
         assert low <= samples.min() + 1e-7 and samples.max() <= high + 1e-7
         inner = ends(entry["attained"])
         assert high - low <= 1.005 * float(inner[1] - inner[0]) + 1e-6
+
+
+@pytest.mark.parametrize("that, over", [
+    ("sensitivity(v, p) <= 0", ""), ("sensitivity(v, half) <= 0", ""), ("value(2**p) <= 4", "over = { p = [1, 5] }"), ("value(T)", "over = { slack = [0, 1] }"),
+    ("value(T)", "over = { base = [0, 1] }"),
+])  # fmt: skip
+def test_names_folded_into_exponents_and_ranges_are_not_followed(that: str, over: str) -> None:
+    """Exponents and range ends are taken at their values: a derivative or range by such a name would be wrong."""
+    from ultibound.checker.derive import Derivation, Unprovable
+    from ultibound.checker.derive import Domain as CheckerDomain
+    from ultibound.checker.statement import read_statement
+    from ultibound.claim import ClaimError
+
+    text = f"""
+format = 1
+[gains]
+half = 1
+p = "2*half"
+base = 0.1
+slack = "base/2"
+[state]
+v = [-1, 1]
+[uncertain]
+T = ["0.3 - slack", "0.3 + slack"]
+[next]
+v = "0.1*v + 0.01*(1 + T)**p"
+[target]
+v = 0
+[[require]]
+that = "{that}"
+{over}
+"""
+    with pytest.raises(ClaimError, match="cannot be followed"):
+        proved(text)
+    derivation = Derivation(read_statement(text, {}, {}))
+    with pytest.raises(Unprovable, match="not followed"):
+        derivation.meaning("require[1]", CheckerDomain(False, Fraction(0), (Fraction(0), Fraction(0))))
+
+
+@pytest.mark.parametrize("where", ["[0.4, 0.4]", "{ values = [0.4] }"])
+def test_a_derivative_on_a_grid_line_counts_both_sides(where: str) -> None:
+    """Slopes +1 below and -2 above the node 0.4: no sign can be proved there, whatever the range."""
+    table = "period,y\n0.3,-0.1\n0.4,0\n0.5,-0.2\n"
+    text = f"""
+format = 1
+[state]
+v = [-1, 1]
+[uncertain]
+T = {where}
+[[library]]
+file = "g.csv"
+at = {{ period = "T" }}
+[next]
+v = "0.1*v + y"
+[target]
+v = 0
+[[require]]
+that = "sensitivity(v, T) < 0"
+[[require]]
+that = "sensitivity(v, T) > -1"
+"""
+    results = proved(text, data={"g.csv": table}).results
+    assert [r["verdict"] for r in results["requirements"]] == ["undecided", "undecided"]
+    low, high = ends(results["requirements"][0]["value"])
+    assert low <= -2 and high >= 1 and high - low < Fraction(301, 100)

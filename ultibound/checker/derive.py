@@ -11,7 +11,7 @@ from math import prod
 from .grammar import constant
 from .model import Quantity, Range, Requirement, Statement
 from .ranges import Ends
-from .terms import Names, Terms
+from .terms import Names, Terms, mentioned
 
 MOST_CELLS = 1_000_000
 
@@ -93,12 +93,37 @@ class Derivation:
     def required(self, r: Requirement, domain: Domain) -> Meaning:
         if r.kind not in ("value", "sensitivity") or r.stance is not None:
             raise Unprovable(f"{r.text!r} is not proved by a range")
+        folded, ends = self.folded(r)
+        if r.by in folded or set(r.over) & (folded | ends):
+            raise Unprovable(
+                f"{r.text!r}: a name that also sets an exponent or the end of a range is not followed there"
+            )
         bound, given = self.through(domain, r.over)
         names = self.names(bound, r.by or "")
         root = names.expression(r.expression) if r.expression is not None else names.of(f"next({r.state})")
         met = self.terms.variables(root)
         on_set = self.state not in r.over and (self.state in met or f"error({self.state})" in met)
         return self.over(root, r.by or "", given, on_set)
+
+    def folded(self, r: Requirement) -> tuple[set[str], set[str]]:
+        """Constants and gains that exponents rest on, and that ranges rest on: both are taken at their values."""
+        s, fixed = self.stance, {**self.statement.constants, **self.statement.gains}
+        texts = [*fixed.values(), *s.define.values(), *s.next.values(), *s.target.values()]
+        texts += [e for library in self.statement.libraries for e in library.at] + (
+            [r.expression] if r.expression else []
+        )
+        quantities = [*s.states.values(), *self.statement.uncertain.values()]
+        ranges = [e for q in quantities if q.range for e in (q.range.lower, q.range.upper)]
+        ranges += [e for q in quantities for e in (*(q.values or ()), *([q.change] if q.change else ()))]
+        exponents = {n for e in [*texts, *ranges] for x in e.nodes if x.op == "power" for n in (x.name or "").split()}
+        ends = {n for e in ranges for n in mentioned(e)}
+        for found in (exponents, ends):
+            waiting = list(found)
+            while waiting:
+                more = set(mentioned(fixed[n])) - found if (n := waiting.pop()) in fixed else set()
+                found |= more
+                waiting += more
+        return exponents, ends
 
     def moving(self) -> list[str]:
         """Held quantities that may change from step to step and that the target depends on."""

@@ -141,7 +141,8 @@ class Parser:
         low, high = constant(Expression(self.text, tuple(shifted)), self.values)
         if low != high or low.denominator > 2 or abs(low) > 64:
             raise Refused(f"an exponent in {self.text[:60]!r} is no integer or half-integer of at most 64")
-        return self.put("power", (base,), low)
+        inside = " ".join(n.name for n in shifted if n.op == "name" and n.name)
+        return self.put("power", (base,), low, inside or None)
 
     def atom(self) -> int:
         token = self.take()

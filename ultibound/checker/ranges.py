@@ -245,7 +245,12 @@ class Evaluator:
         """A multilinear reading and its derivatives, by the chain rule over its axes (proofs/reading.md)."""
         library = self.columns[column]
         ends = [self.exact(x, jet, box) for x, jet in zip(args, axes, strict=True)]
-        cells = self.branch.get(k) or [met(g, *e, self.touching) for g, e in zip(library.grid, ends, strict=True)]
+        # where the marked name moves an axis that stands still on a grid line, both neighbours count: reading.md
+        wide = [
+            self.touching or (bool(self.by) and x.d is not None and e[0] == e[1])
+            for x, e in zip(axes, ends, strict=True)
+        ]
+        cells = self.branch.get(k) or [met(g, *e, t) for g, e, t in zip(library.grid, ends, wide, strict=True)]
         self.branch[k] = cells
         several = any(len(c) > 1 for c in cells)
         self.several |= several

@@ -235,11 +235,40 @@ def not_yet(claim: Claim) -> str | None:
     for number, r in enumerate(claim.requirements, 1):
         if r.kind not in PROVABLE:
             return f"require[{number}]: {r.kind} cannot be proved yet; provable are {', '.join(PROVABLE)}"
+        folded, ends = _folded(claim, r)
+        unfollowed = sorted(({r.by or ""} & folded) | (set(r.over) & (folded | ends)))
+        if unfollowed:
+            why = "it also sets an exponent or the end of a range, which is taken at its value"
+            return f"require[{number}]: {unfollowed[0]} cannot be followed: {why}; use --set for each value"
         if r.over and r.kind not in ("sensitivity", "value"):
             return f"require[{number}]: over cannot be used with {r.kind} yet; use it with sensitivity or value"
     for place, name in _corners(claim):
         return f"{place}: {name} cannot be proved yet; state a smooth map"
     return None
+
+
+def _folded(claim: Claim, r: Requirement) -> tuple[set[str], set[str]]:
+    """Constants and gains that exponents rest on, and those that ranges rest on, directly or through others."""
+    fixed = {**claim.constants, **claim.gains}
+    s = claim.stances[0]
+    spans = [*s.states.values(), *claim.uncertain.values()]
+    ranges = [e for q in spans if q.range is not None for e in (q.range.lower, q.range.upper)]
+    ranges += [e for q in spans for e in (*(q.values or ()), q.change) if e is not None]
+    texts = [*fixed.values(), *s.define.values(), *s.next.values(), *s.target.values(), *ranges]
+    texts += [e for lib in claim.libraries for e in lib.at] + ([r.expression] if r.expression is not None else [])
+    exponents = {name for e in texts for n in e.nodes if n.op == "power" for name in (n.name or "").split()}
+    ends = {name for e in ranges for name in e.names()}
+
+    def below(names: set[str]) -> set[str]:
+        found, waiting = set(names), list(names)
+        while waiting:
+            name = waiting.pop()
+            fresh = set(fixed[name].names()) - found if name in fixed else set()
+            found |= fresh
+            waiting += fresh
+        return found
+
+    return below(exponents), below(ends)
 
 
 def _corners(claim: Claim) -> list[tuple[str, str]]:
