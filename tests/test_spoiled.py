@@ -374,3 +374,13 @@ def test_the_one_file_checker_is_the_folder(pyz: Path) -> None:
         names = {n for n in archive.namelist() if n.endswith(".py")}
         assert {f"checker/{p.name}" for p in CHECKER.glob("*.py")} <= names
     assert zipapp.get_interpreter(pyz) == "/usr/bin/env python3"
+
+
+def test_a_ball_does_not_stand_in_for_a_region_that_is_mapped_into_itself() -> None:
+    """Without a point of the image outside the region, the ball proves no gain."""
+    entries = copy.deepcopy(sample("ball"))
+    number = next(n for n, x in enumerate(entries["proof"], 1) if (x["rule"], x["proves"]) == ("point", "image[v]"))
+    del entries["proof"][number - 1]
+    for line in entries["proof"]:
+        line["uses"] = [n - (n > number) for n in line["uses"]]
+    rejected(resealed(entries), "verdict: proved is claimed, undecided was derived")

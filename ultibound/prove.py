@@ -154,7 +154,7 @@ class Attempt:
     def _certified(self, target: Proved, ball: Domain, on: int) -> tuple[Domain, int]:
         """S: the region if it is mapped into itself (then a line says so), else the largest ball in it."""
         for gap in (COARSE, self.gap):  # only inclusion counts: few leaves show it where there is room
-            image = self.enclose(self.obligations.image(), None, points=False, gap=gap)
+            image = self.enclose(self.obligations.image(), None, points=gap == self.gap, gap=gap)
             if image is not None:
                 try:
                     line = self.writer.theorem("invariant-region", "invariant", [target.line, image.line], {})

@@ -78,7 +78,8 @@ class Derivation:
             return self.over(self.terms.put("sub", (step, target)))
         if name in {f"target-slope[{s},{h}]": h for h in self.moving()}:
             held = name.removeprefix(f"target-slope[{s},").removesuffix("]")
-            given = {h: (self.occurs(self.statement.uncertain[h]),) * 2 for h in self.moving()}
+            held_ = {h: self.statement.uncertain[h] for h in self.moving()}
+            given = {h: (self.occurs(q), self.surely(q)) for h, q in held_.items()}
             return self.over(self.names(cut=held).of(f"target({s})"), held, given)
         if domain is None:
             raise Unprovable(f"{name} needs a line that gives its set")
@@ -200,12 +201,19 @@ class Derivation:
         cells = [constant(e, self.statement.values) for e in quantity.values]
         return min(c[0] for c in cells), max(c[1] for c in cells)
 
+    def surely(self, quantity: Quantity) -> Ends:
+        """Ends between which a quantity surely varies: inside what it may be where ends are irrational."""
+        if quantity.values is None:
+            return self.range(quantity)[1]
+        cells = [constant(e, self.statement.values) for e in quantity.values]
+        return min(c[1] for c in cells), max(c[0] for c in cells)
+
     def change(self, held: str) -> Ends:
-        """How far a held quantity may move in one step, at most the width of its range."""
+        """How far a held quantity moves in one step, surely and at most; never more than the width of its range."""
         quantity = self.statement.uncertain[held]
-        low, high = self.occurs(quantity)
+        (low, high), (inner_low, inner_high) = self.occurs(quantity), self.surely(quantity)
         moved = constant(quantity.change, self.statement.values) if quantity.change is not None else (high - low,) * 2
-        return min(moved[0], high - low), min(moved[1], high - low)
+        return max(Fraction(0), min(moved[0], inner_high - inner_low)), min(moved[1], high - low)
 
     def leaves_out(self, r: Requirement) -> bool:
         """Whether `over` may leave out values that occur (always said of a defined name: it is set free)."""

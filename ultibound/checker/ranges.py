@@ -245,11 +245,10 @@ class Evaluator:
         """A multilinear reading and its derivatives, by the chain rule over its axes (proofs/reading.md)."""
         library = self.columns[column]
         ends = [self.exact(x, jet, box) for x, jet in zip(args, axes, strict=True)]
-        # where the marked name moves an axis that stands still on a grid line, both neighbours count: reading.md
-        wide = [
-            self.touching or (bool(self.by) and x.d is not None and e[0] == e[1])
-            for x, e in zip(axes, ends, strict=True)
-        ]
+        # where the marked name moves an axis that may stand still on a grid line, both neighbours count: reading.md
+        moved = [bool(self.by) and x.d is not None for x in axes]
+        still = [e[0] == e[1] or self.axes[x] is None for x, e in zip(args, ends, strict=True)]
+        wide = [self.touching or all(pair) for pair in zip(moved, still, strict=True)]
         cells = self.branch.get(k) or [met(g, *e, t) for g, e, t in zip(library.grid, ends, wide, strict=True)]
         self.branch[k] = cells
         several = any(len(c) > 1 for c in cells)

@@ -52,7 +52,7 @@ class Results:
         near = (
             self.radius.upper is not None and self.radius.upper - ball.concludes["radius"] <= SLACK * self.radius.upper
         )
-        self.whole = self.kind == "region" or (self.settled and near)
+        self.whole = self.kind == "region" or (self.settled and near and self.escapes())
         self.gain = self.residual = Span(None, None)
         self.bound: Span | None = None
         if pair is not None:
@@ -65,7 +65,13 @@ class Results:
                 self.bound = Span(lower, bounded.concludes["bound"])
         self.requirements = [self.required(n, r) for n, r in enumerate(self.statement.requirements, 1)]
 
-    # A ball smaller than the largest proves the radius alone (proofs/invariant-set.md (4)): `whole` tells it apart.
+    def escapes(self) -> bool:
+        """Whether a point shows the region not mapped into itself: else no ball is the set (proofs/invariant-set.md (4))."""
+        (low, high), _ = self.derivation.region()
+        points = self.lines("point", f"image[{self.state}]")
+        out = [n for n, x in points if x.concludes["lower"] > high or x.concludes["upper"] < low]
+        self.needed.update(out[:1])
+        return bool(out)
 
     def reach(self) -> Fraction | None:
         """The least distance to the edge of the region of a target surely taken."""
