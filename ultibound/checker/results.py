@@ -66,7 +66,7 @@ class Results:
         self.requirements = [self.required(n, r) for n, r in enumerate(self.statement.requirements, 1)]
 
     def escapes(self) -> bool:
-        """Whether a point shows the region not mapped into itself: else no ball is the set (proofs/invariant-set.md (4))."""
+        """Whether a point leaves the region: else no ball is the set (proofs/invariant-set.md (4))."""
         (low, high), _ = self.derivation.region()
         points = self.lines("point", f"image[{self.state}]")
         out = [n for n, x in points if x.concludes["lower"] > high or x.concludes["upper"] < low]
