@@ -69,7 +69,7 @@ def asked(text: str, values: Mapping[str, Ends]) -> Requirement:
 def side(p: Parser) -> Expression:
     p.nodes = []
     p.sum()
-    checked(p.nodes)
+    checked(p.nodes, p.values)
     return p.whole()
 
 

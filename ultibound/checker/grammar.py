@@ -3,50 +3,58 @@
 from __future__ import annotations
 
 import re
-from collections.abc import Mapping
+from collections.abc import Iterable, Mapping
 from dataclasses import dataclass
+from difflib import get_close_matches
 from fractions import Fraction
 from itertools import pairwise
 from math import isqrt
+from typing import cast
 
 from .numerals import spelled
-from .reals import Scaled, Undefined
+from .reals import Interval, Scaled, Undefined
 
-LONGEST, DEEPEST, BITS, FOLDED = 10_000, 64, 160, 2**17
+LONGEST, DEEPEST, BITS, FOLDED, WORK = 10_000, 64, 160, 2**17, 2**20
 UNARY = frozenset(["sqrt", "exp", "log", "sin", "cos", "tan", "asin", "acos", "atan", "sinh", "cosh", "tanh", "abs"])
 ARGUMENTS = {**dict.fromkeys(UNARY, (1, 1)), "min": (2, 9999), "max": (2, 9999), "clip": (3, 3), "bezier": (2, 9999)}
 FUNCTIONS = frozenset({*ARGUMENTS, "dt", "target"})
-RESERVED = FUNCTIONS | frozenset(
-    [
-        "t",
-        "pi",
-        "settles",
-        "gain",
-        "residual",
-        "bound",
-        "sharp_bound",
-        "radius",
-        "push",
-        "steps",
-        "sensitivity",
-        "value",
-        "always",
-        "throughout",
-        "next",
-        "during",
-    ]
-)
+WORDS = "settles gain residual bound sharp_bound radius push steps sensitivity value always throughout next during"
+RESERVED = FUNCTIONS | {"t", "pi", *WORDS.split()}
+AT_ZERO = {
+    **dict.fromkeys(("sin", "tan", "asin", "atan", "sinh", "tanh"), 0),
+    **dict.fromkeys(("cos", "exp", "cosh"), 1),
+}
 NAME = re.compile(r"[A-Za-z][A-Za-z0-9_]{0,39}", re.ASCII)
 TOKEN = re.compile(
     r"[ \t\r\n]+|(?P<number>[0-9][0-9A-Za-z_.]*(?:(?<=e)-[0-9]+)?)|(?P<name>[A-Za-z_][A-Za-z0-9_]*)"
     r"|(?P<mark>\*\*|<=|>=|[-+*/(),<>])",
     re.ASCII,
 )
+EASY = frozenset(["add", "sub", "mul", "div", "neg", "abs", "min", "max", "clip", "power", "sqrt", "pi"])
 Ends = tuple[Fraction, Fraction]
 
 
 class Refused(Exception):
-    """A claim outside the format: the place, the rule and what was found."""
+    """A claim outside the format: the place, the rule and what was found, short and printable whatever was found."""
+
+    def __str__(self) -> str:
+        text = super().__str__()
+        text = text if len(text) <= 400 else f"{text[:200]} … {text[-200:]}"
+        return "".join(c if c.isprintable() else "\ufffd" for c in text)
+
+
+class Known(dict[str, Ends]):
+    """Values of constants and gains, and the work reading a claim may still take: none stalls the checker."""
+
+    left = WORK
+
+    def spend(self, q: Fraction, times: int = 1) -> None:
+        self.take((max(q.numerator.bit_length(), q.denominator.bit_length()) >> 10) ** 2 * times)
+
+    def take(self, work: int) -> None:
+        self.left -= work
+        if self.left < 0:
+            raise Refused("the numbers of this claim are too long to be worked out; shorten them")
 
 
 @dataclass(frozen=True)
@@ -81,7 +89,7 @@ class Parser:
     """Recursive descent with a depth count. `values` are the constants and gains an exponent may use."""
 
     def __init__(self, text: str, values: Mapping[str, Ends], steps: bool = False) -> None:
-        self.text, self.values, self.steps = text, values, steps
+        self.text, self.values, self.steps = text, known(values), steps
         self.left, self.at, self.depth = tokens(text), 0, 0
         self.nodes: list[Node] = []
 
@@ -159,6 +167,7 @@ class Parser:
                 raise Refused(str(why)) from None
             if value is None:
                 raise Refused(f"{token[:40]!r} is no number")
+            self.values.spend(value)
             return self.put("number", (), value)
         if token == "pi":
             return self.put("pi")
@@ -181,7 +190,7 @@ class Parser:
                 raise Refused(f"{name}({state[:40]}): a state is expected")
             return self.put(name, (), None, state)
         if name not in ARGUMENTS and name != "dt":
-            raise Refused(f"{name[:60]!r} is no function")
+            raise Refused(f"{name[:60]!r} is no function{nearest(name, FUNCTIONS)}")
         args = [self.sum()]
         while self.peek() == ",":
             self.take()
@@ -206,8 +215,14 @@ def parse(text: str, values: Mapping[str, Ends], steps: bool = False) -> Express
     parser = Parser(text, values, steps)
     parser.sum()
     parser.ended()
-    checked(parser.nodes)
+    checked(parser.nodes, parser.values)
     return parser.whole()
+
+
+def nearest(name: str, among: Iterable[str]) -> str:
+    """A hint for messages: the name most like it, if any is."""
+    close = get_close_matches(name[:40], sorted(among)[:2000], 1)
+    return f"; did you mean {close[0]}?" if close else ""
 
 
 def names(e: Expression) -> list[str]:
@@ -215,15 +230,20 @@ def names(e: Expression) -> list[str]:
     return [str(n.name) for n in e.nodes if n.op == "name"]
 
 
-def checked(nodes: list[Node]) -> None:
+def known(values: Mapping[str, Ends]) -> Known:
+    return values if isinstance(values, Known) else Known(values)
+
+
+def checked(nodes: list[Node], values: Known) -> None:
     """Refuses constant parts whose exact value is too long, or that divide by zero."""
-    known: list[Fraction | None] = []
+    found: list[Fraction | None] = []
     for n in nodes:
-        operands = [known[a] for a in n.args]
-        given = [q for q in operands if q is not None]
-        known.append(
-            n.value if n.op == "number" else exact(n, given) if n.args and len(given) == len(operands) else None
-        )
+        given = [q for a in n.args if (q := found[a]) is not None]
+        found.append(n.value if n.op == "number" else None)
+        if n.args and len(given) == len(n.args):
+            found[-1] = value = exact(n, given)
+            if value is not None:
+                values.spend(value)
 
 
 def exact(n: Node, given: list[Fraction]) -> Fraction | None:
@@ -279,7 +299,7 @@ def root(a: Fraction) -> Fraction | None:
 
 def constant(e: Expression, values: Mapping[str, Ends]) -> Ends:
     """Enclosure of a constant expression, of equal ends where it is exact. Raises Refused where it has no value."""
-    arithmetic = Scaled(BITS)
+    arithmetic, values = Scaled(BITS), known(values)
     done: list[Ends] = []
     for n in e.nodes:
         args = [done[a] for a in n.args]
@@ -290,39 +310,52 @@ def constant(e: Expression, values: Mapping[str, Ends]) -> Ends:
         elif n.op == "name" or n.op in ("time", "target", "next", "dt"):
             raise Refused(f"{n.name or n.op!r} is no constant")
         else:
+            if n.op == "bezier":
+                values.take(len(args) ** 2)
             done.append(evaluated(n, args, arithmetic))
+            hard = 1 if n.op in EASY else 512  # a function takes about as long as so many products
+            for q in (done[-1][1], *(e[1] for e in args if hard > 1)):
+                values.spend(q, hard)
     return done[-1]
+
+
+def enclosed(n: Node, x: list[Interval], a: Scaled) -> Interval:
+    """An operation in outward-rounded arithmetic. Raises Undefined."""
+    if n.op == "pi":
+        return a.pi()
+    if n.op == "power" and n.value is not None:
+        base = a.sqrt(x[0]) if n.value.denominator == 2 else x[0]
+        p = int(n.value * n.value.denominator)
+        raised = a.power(base, abs(p))
+        return raised if p >= 0 else a.div(a.number(Fraction(1)), raised)
+    if n.op == "bezier":
+        points = x[1:]
+        while len(points) > 1:  # de Casteljau
+            points = [a.add(p, a.mul(x[0], a.sub(q, p))) for p, q in pairwise(points)]
+        return points[0]
+    operation = {"add": a.add, "sub": a.sub, "mul": a.mul, "div": a.div}.get(n.op) or getattr(a, n.op)
+    return cast(Interval, operation(*x))
 
 
 def evaluated(n: Node, args: list[Ends], a: Scaled) -> Ends:
     if args and all(low == high for low, high in args):
         value = exact(n, [low for low, _ in args])
+        if value is None and args[0][0] == 0 and n.op in AT_ZERO:
+            value = Fraction(AT_ZERO[n.op])
+        if value is None and args[0][0] == 1 and n.op in ("log", "acos"):
+            value = Fraction(0)
         if value is not None:
             return value, value
-    x = [a.between(*e) for e in args]
+    if n.op == "abs":
+        low, high = args[0]
+        return (low, high) if low >= 0 else (-high, -low) if high <= 0 else (Fraction(0), max(-low, high))
+    if n.op in ("min", "max"):
+        pick = min if n.op == "min" else max
+        return pick(e[0] for e in args), pick(e[1] for e in args)
+    if n.op == "clip":
+        (low, high), lower, upper = args
+        return min(max(low, lower[0]), upper[0]), min(max(high, lower[1]), upper[1])
     try:
-        if n.op == "pi":
-            return a.ends(a.pi())
-        if n.op == "power" and n.value is not None:
-            base = a.sqrt(x[0]) if n.value.denominator == 2 else x[0]
-            p = int(n.value * n.value.denominator)
-            raised = a.power(base, abs(p))
-            return a.ends(raised if p >= 0 else a.div(a.number(Fraction(1)), raised))
-        if n.op == "abs":
-            low, high = args[0]
-            return (low, high) if low >= 0 else (-high, -low) if high <= 0 else (Fraction(0), max(-low, high))
-        if n.op in ("min", "max"):
-            pick = min if n.op == "min" else max
-            return pick(e[0] for e in args), pick(e[1] for e in args)
-        if n.op == "clip":
-            (low, high), lower, upper = args
-            return min(max(low, lower[0]), upper[0]), min(max(high, lower[1]), upper[1])
-        if n.op == "bezier":
-            points = x[1:]
-            while len(points) > 1:
-                points = [a.add(p, a.mul(x[0], a.sub(q, p))) for p, q in pairwise(points)]
-            return a.ends(points[0])
-        operation = {"add": a.add, "sub": a.sub, "mul": a.mul, "div": a.div}.get(n.op) or getattr(a, n.op)
-        return a.ends(operation(*x))
+        return a.ends(a.between(*a.ends(enclosed(n, [a.between(*e) for e in args], a))))
     except Undefined as why:
         raise Refused(f"a constant expression: {why}") from None

@@ -9,7 +9,7 @@ CLAIM_DIGITS = 4000
 CERTIFICATE_DIGITS = 50_000
 SPELLING = re.compile(r"(-?)(0|[1-9][0-9]*)(?:\.([0-9]+))?(?:e(-?[0-9]{1,4}))?", re.ASCII)
 RATIONAL = re.compile(r"(-?)([1-9][0-9]*)(?:/([1-9][0-9]*))?", re.ASCII)
-CHUNK = 4000
+CHUNK = 600  # below any limit Python may be told to set
 
 
 def whole(digits: str) -> int:
@@ -32,17 +32,21 @@ def text_of(n: int) -> str:
     return str(n) + "".join(reversed(parts))
 
 
+def spelling(text: str, limit: int = CLAIM_DIGITS) -> re.Match[str] | None:
+    """Sign, units, decimals, exponent; None outside the grammar. Raises ValueError beyond the limit of digits."""
+    found = SPELLING.fullmatch(text)
+    if found is not None and len(found[2]) + len(found[3] or "") > limit:
+        raise ValueError(f"a number of more than {limit} digits")
+    return found
+
+
 def spelled(text: str, limit: int = CLAIM_DIGITS) -> Fraction | None:
     """The number a claim spells, exactly; None outside the grammar. Raises ValueError beyond the limit of digits."""
-    if len(text) > limit + 10:
-        raise ValueError(f"a number of more than {limit} digits")
-    found = SPELLING.fullmatch(text)
+    found = spelling(text, limit)
     if found is None:
         return None
     sign, units, decimals, exponent = found.groups()
     decimals = decimals or ""
-    if len(units) + len(decimals) > limit:
-        raise ValueError(f"a number of more than {limit} digits")
     n = whole(units + decimals) * (-1 if sign else 1)
     power = int(exponent or "0") - len(decimals)
     return Fraction(n * 10**power) if power >= 0 else Fraction(n, 10**-power)
@@ -50,7 +54,7 @@ def spelled(text: str, limit: int = CLAIM_DIGITS) -> Fraction | None:
 
 def read_number(text: str) -> Fraction:
     """A certificate's number: a rational in lowest terms or a decimal. Raises ValueError."""
-    if len(text) > CERTIFICATE_DIGITS:
+    if sum(map(str.isdigit, text)) > CERTIFICATE_DIGITS:
         raise ValueError(f"a number of more than {CERTIFICATE_DIGITS} digits")
     if text == "0":
         return Fraction(0)
@@ -68,7 +72,7 @@ def read_number(text: str) -> Fraction:
 
 
 def decimal_down(q: Fraction, digits: int) -> str:
-    """The largest decimal of so many significant digits that is not above q."""
+    """The largest decimal of so many significant digits that is not above q. Raises ValueError beyond 50,000 digits."""
     if q == 0:
         return "0"
     top, low = abs(q.numerator), q.denominator
@@ -85,25 +89,28 @@ def decimal_down(q: Fraction, digits: int) -> str:
 
 
 def decimal_up(q: Fraction, digits: int) -> str:
-    """The least decimal of so many significant digits that is not below q."""
+    """The least decimal of so many significant digits that is not below q. Raises ValueError beyond 50,000 digits."""
     text = decimal_down(-q, digits)
     return text[1:] if text.startswith("-") else text if text == "0" else f"-{text}"
 
 
 def placed(n: int, power: int) -> str:
-    """n * 10**power as a decimal of the certificate format."""
+    """n * 10**power as a decimal of the certificate format; written out where four digits of exponent do not do."""
     if n == 0:
         return "0"
     sign, digits = ("-" if n < 0 else ""), text_of(abs(n))
     stripped = digits.rstrip("0")
     power += len(digits) - len(stripped)
     digits = stripped
-    if 0 <= power <= 6:
-        return sign + digits + "0" * power
     point = len(digits) + power  # digits before the point
+    far = not -9999 < point <= 9999
+    if far and abs(power) + len(digits) > CERTIFICATE_DIGITS:
+        raise ValueError(f"a number of more than {CERTIFICATE_DIGITS} digits")
+    if power >= 0 and (power <= 6 or far):
+        return sign + digits + "0" * power
     if power < 0 < point:
         return f"{sign}{digits[:point]}.{digits[point:]}"
-    if power < 0 and -6 < point <= 0:
+    if power < 0 and point <= 0 and (point > -6 or far):
         return f"{sign}0.{'0' * -point}{digits}"
     tail = f".{digits[1:]}" if len(digits) > 1 else ""
     return f"{sign}{digits[0]}{tail}e{power + len(digits) - 1}"

@@ -5,52 +5,38 @@ from __future__ import annotations
 import re
 from collections.abc import Mapping
 from dataclasses import replace
+from fractions import Fraction
 from typing import Any
 
 from .asked import asked
-from .grammar import NAME, RESERVED, Ends, Expression, Node, Refused, constant, names, parse
+from .grammar import NAME, RESERVED, WORK, Ends, Expression, Known, Node, Refused, constant, names, nearest, parse
 from .library import Library, read_library
 from .model import Dynamics, Quantity, Range, Requirement, Stance, Statement
-from .numerals import spelled
-from .scope import Scope
-from .tables import Number, flag, loaded, spelling, table, text_of
+from .numerals import spelled, spelling
+from .scope import Scope, arranged
+from .tables import Number, flag, loaded, table, text_of, well_spelled
 
-TOP = frozenset(
-    [
-        "format",
-        "title",
-        "notes",
-        "route",
-        "correction",
-        "shrink",
-        "horizon",
-        "constants",
-        "gains",
-        "state",
-        "uncertain",
-        "define",
-        "next",
-        "target",
-        "metric",
-        "effort",
-        "require",
-        "dynamics",
-        "library",
-        "stance",
-    ]
+KEYS = (
+    "format title notes route correction shrink horizon constants gains state uncertain define next target metric "
+    "effort require dynamics library stance"
 )
+MOST_TEXT = 2**23  # characters of the claim times its stances: what is shared is gone through once for each
 WORD = re.compile(r"(?<![0-9A-Za-z_.])[A-Za-z][A-Za-z0-9_]*", re.ASCII)
 
 
 def read_statement(text: str, settings: Mapping[str, str], data: Mapping[str, str]) -> Statement:
     """The statement of a claim's text, gains replaced by `settings`, files taken from `data`. Raises Refused."""
-    return Reader(loaded(text), settings, data).statement()
+    raw = loaded(text)
+    stances = raw.get("stance")
+    if isinstance(stances, dict) and len(stances) > 1 and len(stances) * len(text) > MOST_TEXT:
+        raise Refused(f"stance: {len(stances)} stances of so long a claim; at most {MOST_TEXT // len(text)}")
+    return Reader(raw, settings, data).statement()
 
 
 class Reader:
     def __init__(self, raw: dict[str, Any], settings: Mapping[str, str], data: Mapping[str, str]) -> None:
-        self.raw, self.data = table(raw, "claim", TOP), data
-        self.values: dict[str, Ends] = {}
+        self.raw, self.data = table(raw, "claim", KEYS.split()), data
+        self.values = Known()
         self.declared: set[str] = set()
         if type(raw.get("format")) is not int or raw["format"] != 1:
             raise Refused("format: 1 is expected")
@@ -61,20 +47,27 @@ class Reader:
     def expression(self, value: Any, place: str, steps: bool = False) -> Expression:
         if isinstance(value, (bool, dict, list)) or not isinstance(value, (str, int)):
             raise Refused(f"{place}: an expression is expected")
-        if isinstance(value, (Number, int)):
-            q = spelling(str(value))
-            return Expression(str(value), (Node("number", (), q),))
         try:
+            if isinstance(value, (Number, int)):
+                q = spelled(well_spelled(str(value)))
+                self.values.spend(q or Fraction(0))
+                return Expression(str(value), (Node("number", (), q),))
             return parse(value, self.values, steps)
         except Refused as why:
             raise Refused(f"{place}: {why}") from None
 
+    def value(self, e: Expression) -> Ends:
+        return constant(e, self.values)
+
     def constant(self, value: Any, place: str) -> tuple[Expression, Ends]:
         e = self.expression(value, place)
         try:
-            return e, constant(e, self.values)
+            return e, self.value(e)
         except Refused as why:
             raise Refused(f"{place}: {why}") from None
+
+    def group(self, value: Any, place: str) -> dict[str, Expression]:
+        return {n: self.expression(e, f"{place}.{n}") for n, e in table(value, place).items()}
 
     def range(self, value: Any, place: str, strict: bool = False) -> Range:
         if not isinstance(value, list) or len(value) != 2:
@@ -102,28 +95,18 @@ class Reader:
                 if name not in raw:
                     raise Refused(f"set: {name[:60]!r} is no gain")
                 raw[name] = replaced(text)
+        uses = {n: [w for w in WORD.findall(v) if w in raw] if type(v) is str else [] for n, v in raw.items()}
+        place, turn = {name: k for k, name in enumerate(raw)}, dict[str, int]()
+        for name in arranged(raw, uses):  # turn after turn, each time in the order of the file
+            turn[name] = max((turn[w] + (place[w] > place[name]) for w in uses[name]), default=0)
         found: dict[str, Expression] = {}
-        waiting = dict(raw)
-        while waiting:
-            before = len(waiting)
-            for name, value in list(waiting.items()):
-                used = set(WORD.findall(value)) if type(value) is str else set()
-                if used & (set(waiting) - {name}) or (used & {name} and used & set(raw)):
-                    continue
-                found[name], self.values[name] = self.constant(value, f"{section}.{name}")
-                del waiting[name]
-            if len(waiting) == before:
-                raise Refused(f"{section}: {', '.join(sorted(waiting))[:80]} depend on each other")
+        for name in sorted(raw, key=lambda n: (turn[n], place[n])):
+            found[name], self.values[name] = self.constant(raw[name], f"{section}.{name}")
         return found
 
     def quantity(self, name: str, value: Any, place: str, state: bool, moving: bool) -> Quantity:
-        raw = (
-            {"range": value}
-            if isinstance(value, list)
-            else table(
-                value, place, {"range", "unit"} if state else {"range", "values", "unit", "held", "change", "within"}
-            )
-        )
+        keys = ("range", "unit") if state else ("range", "values", "unit", "held", "change", "within")
+        raw = {"range": value} if isinstance(value, list) else table(value, place, keys)
         if ("range" in raw) == ("values" in raw):
             raise Refused(f"{place}: a range or values, one of them")
         held, within = flag(raw.get("held", False), place), flag(raw.get("within", False), place)
@@ -168,41 +151,29 @@ class Reader:
             if any(name not in own for own in own_states.values()):
                 raise Refused(f"stance: state {name} is missing in one of them")
         libraries = self.libraries()
-        for library in libraries:
-            for column in library.columns:
-                self.declare(column, library.file)
-        shared = {n: self.expression(v, f"define.{n}") for n, v in table(raw.get("define", {}), "define").items()}
-        own = {
-            n: {
-                d: self.expression(v, f"stance.{n}.define.{d}")
-                for d, v in table(s.get("define", {}), f"stance.{n}.define").items()
-            }
-            for n, s in stances.items()
-        }
+        shared = self.group(raw.get("define", {}), "define")
+        own = {n: self.group(s.get("define", {}), f"stance.{n}.define") for n, s in stances.items()}
         for name in [*shared, *sorted({d for o in own.values() for d in o})]:
             self.declare(name, "define")
         if len({frozenset(o) for o in own.values()}) > 1:
             raise Refused("stance: a name defined in one stance must be defined in every one")
+        self.groups = {k: self.group(raw.get(k, {}), k) for k in ("next", "target")}
+        self.running = self.dynamics(raw["dynamics"]) if "dynamics" in raw else None
         found = []
         for name, s in (stances or {"": {}}).items():
             if name and not NAME.fullmatch(name):
                 raise Refused(f"stance: {name[:60]!r} cannot be a name")
-            found.append(
-                self.stance(
-                    name, s, {**states, **own_states.get(name, {})}, {**shared, **own.get(name, {})}, set(stances)
-                )
-            )
-        if (
-            len(
-                {frozenset(s.dynamics.start) for s in found if s.dynamics}
-                | {frozenset() for s in found if not s.dynamics}
-            )
-            > 1
-        ):
+            area, define = {**states, **own_states.get(name, {})}, {**shared, **own.get(name, {})}
+            found.append(self.stance(name, s, area, define, set(stances)))
+        if len({frozenset(s.dynamics.start if s.dynamics else ()) for s in found}) > 1:
             raise Refused("dynamics: the same continuous states in every stance")
         for name in found[0].dynamics.start if found[0].dynamics else ():
             self.declare(name, "dynamics")
-        found = [self.ordered(s, constants, gains, uncertain, libraries) for s in found]
+        stances_ = {s.name for s in found} - {""}
+        scopes = [Scope(s, {*constants, *gains}, uncertain, libraries, s.dynamics is not None, stances_) for s in found]
+        found = [
+            replace(s, define={n: s.define[n] for n in scope.order()}) for s, scope in zip(found, scopes, strict=True)
+        ]
         correction = raw.get("correction", ["-"])
         if not isinstance(correction, list) or not correction or len(set(map(str, correction))) < len(correction):
             raise Refused("correction: a list of different defined names")
@@ -230,11 +201,11 @@ class Reader:
         cells = effort.get("cells", 200_000)
         if not (gap[0] > 0 and gap[1] < 1 and seconds[0] > 0) or type(cells) is not int or cells < 1:
             raise Refused("effort: 0 < gap < 1, cells at least 1, seconds above 0")
-        names_ = Scope(found[0], constants, gains, uncertain, libraries, moving, {s.name for s in found} - {""})
         listed = raw.get("require", [{"that": "settles"}])
         if not isinstance(listed, list) or not 1 <= len(listed) <= 1000:
             raise Refused("require: 1 to 1,000 tables")
-        requirements = tuple(self.requirement(r, n, names_) for n, r in enumerate(listed, 1))
+        requirements = tuple(self.requirement(r, n, scopes[0]) for n, r in enumerate(listed, 1))
+        self.values.left = WORK
         return Statement(
             title, notes, route, tuple(correction) if "correction" in raw else (),
             flag(raw.get("shrink", False), "shrink"), horizon, constants, gains, uncertain, libraries, kind, weights,
@@ -249,19 +220,17 @@ class Reader:
         found = []
         for k, item in enumerate(raw if isinstance(raw, list) else [raw], 1):
             place = f"library[{k}]"
-            file, at = (
-                text_of(table(item, place, ("file", "at")).get("file"), place),
-                table(item.get("at"), f"{place}.at"),
-            )
+            file = text_of(table(item, place, ("file", "at")).get("file"), place)
+            at = table(item.get("at"), f"{place}.at")
             if not file or any(p in ("", ".", "..") for p in file.split("/")) or "\\" in file or not file.isprintable():
                 raise Refused(f"{place}.file: a path beside or below the claim")
             if file not in self.data:
                 raise Refused(f"{place}: {file[:60]!r} is not there")
             if not 1 <= len(at) <= 4:
                 raise Refused(f"{place}.at: one to four axes")
-            found.append(
-                read_library(file, self.data[file], {a: self.expression(e, f"{place}.at.{a}") for a, e in at.items()})
-            )
+            found.append(read_library(file, self.data[file], self.group(at, f"{place}.at"), self.values))
+            for column in found[-1].columns:
+                self.declare(column, file)
         if "library" in self.raw and not found:
             raise Refused("library: at least one")
         return tuple(found)
@@ -270,10 +239,13 @@ class Reader:
         self, key: str, stance: dict[str, Any], name: str, states: Mapping[str, Quantity]
     ) -> dict[str, Expression]:
         """`next` or `target` of a stance: shared entries and its own, every state once."""
-        shared, own = table(self.raw.get(key, {}), key), table(stance.get(key, {}), f"stance.{name}.{key}")
+        place = f"stance.{name}.{key}" if name else key
+        shared, own = self.groups[key], self.group(stance.get(key, {}), place)
+        for s in {*shared, *own} - set(states):
+            raise Refused(f"{place}.{s}: no state of that name{nearest(s, states)}")
         if set(shared) & set(own) or set(shared) | set(own) != set(states) or not states:
             raise Refused(f"{key}: one expression for each state, shared or in every stance")
-        return {s: self.expression({**shared, **own}[s], f"{key}.{s}") for s in states}
+        return {s: (own if s in own else shared)[s] for s in states}
 
     def stance(
         self, name: str, raw: dict[str, Any], states: dict[str, Quantity], define: dict[str, Expression], all_: set[str]
@@ -296,8 +268,7 @@ class Reader:
             raise Refused(f"stance.{name}.mirror: a list of states")
         if "dynamics" in self.raw and "dynamics" in raw:
             raise Refused("dynamics: shared, or in every stance")
-        own = raw.get("dynamics", self.raw.get("dynamics"))
-        dynamics = None if own is None else self.dynamics(own)
+        dynamics = self.dynamics(raw["dynamics"]) if "dynamics" in raw else self.running
         return Stance(
             name,
             tuple(then),
@@ -319,37 +290,13 @@ class Reader:
         within = None
         if "within" in raw:
             within = self.range(raw["within"], "dynamics.within", strict=True)
-            if constant(within.lower, self.values)[0] < 0:
+            if self.value(within.lower)[0] < 0:
                 raise Refused("dynamics.within: from 0 on")
         parts = [self.expression(raw[k], f"dynamics.{k}") if k in raw else None for k in ("duration", "until")]
-        return Dynamics(parts[0], parts[1], within,
-                        {s: self.expression(e, f"dynamics.start.{s}") for s, e in start.items()},
-                        {s: self.expression(e, f"dynamics.rate.{s}") for s, e in rate.items()})  # fmt: skip
+        starts, rates = self.group(start, "dynamics.start"), self.group(rate, "dynamics.rate")
+        return Dynamics(parts[0], parts[1], within, starts, rates)
 
-    # names
-
-    def ordered(
-        self, s: Stance, constants: Any, gains: Any, uncertain: dict[str, Quantity], libraries: tuple[Library, ...]
-    ) -> Stance:
-        """The stance with its definitions in order of dependence, every name known and allowed where it stands."""
-        scope = Scope(s, constants, gains, uncertain, libraries, s.dynamics is not None, set())
-        for place, e in scope.texts():
-            scope.known(e, place)
-        order = scope.order()
-        held = {n for n, q in uncertain.items() if q.held} | set(constants) | set(gains)
-        for name, e in s.target.items():
-            loose = {n for n in scope.leaves(e) if n not in held}
-            if loose:
-                raise Refused(f"target.{name}: {sorted(loose)[0]} is not constant, gain or held")
-        timed = {"t", *(s.dynamics.start if s.dynamics else ())}
-        for library in libraries:
-            for e in library.at:
-                if scope.leaves(e, columns=True) & (timed | set(scope.columns)):
-                    raise Refused(f"{library.file}: at uses a library column or the stance's time")
-        for place, e in scope.early():
-            if scope.leaves(e) & timed:
-                raise Refused(f"{place}: uses the stance's time")
-        return replace(s, define={n: s.define[n] for n in order})
+    # requirements
 
     def requirement(self, value: Any, number: int, scope: Scope) -> Requirement:
         place = f"require[{number}]"
@@ -357,24 +304,23 @@ class Reader:
         text = text_of(raw.get("that"), f"{place}.that")
         try:
             r = asked(text, self.values)
+            for e in (r.constant, r.start, r.end):
+                if e is not None:
+                    self.value(e)
         except Refused as why:
             raise Refused(f"{place}: {why}") from None
         if r.state is not None and r.state not in scope.stance.states:
-            raise Refused(f"{place}: {r.state[:60]!r} is no state")
-        if r.by is not None and (r.by not in scope.everything() or r.by in scope.continuous):
-            raise Refused(f"{place}: {r.by[:60]!r} is no declared or defined name")
+            raise Refused(f"{place}: {r.state[:60]!r} is no state{nearest(r.state, scope.stance.states)}")
+        if r.by is not None and (r.by not in scope.names or r.by in scope.continuous):
+            raise Refused(f"{place}: {r.by[:60]!r} is no declared or defined name{nearest(r.by, scope.names)}")
         for e in (r.expression, r.left, r.right):
             if e is not None:
                 scope.known(e, place)
-        for e in (r.constant, r.start, r.end):
-            if e is not None:
-                constant(e, self.values)
         if (r.during or r.kind == "throughout") and not scope.moving:
             raise Refused(f"{place}: needs dynamics")
         over = {}
         for name, ends in table(raw.get("over", {}), f"{place}.over").items():
-            declared = {*scope.stance.states, *scope.uncertain, *self.values}
-            if name not in declared and not (
+            if name not in scope.ranged and not (
                 r.kind == "sensitivity" and (name in scope.stance.define or name in scope.columns)
             ):
                 raise Refused(f"{place}.over: {name[:60]!r} cannot be given a range")
@@ -388,11 +334,11 @@ class Reader:
 def replaced(text: str) -> Any:
     """A gain's new value: a number, or a constant expression without names."""
     try:
-        value = spelled(text)
-    except ValueError as why:
+        if spelling(text) is not None:
+            return Number(text)
+        plain = not names(parse(text, {}))
+    except (Refused, ValueError) as why:
         raise Refused(f"set: {why}") from None
-    if value is not None:
-        return Number(text)
-    if names(parse(text, {})):
+    if not plain:
         raise Refused("set: a constant expression without names")
     return text
