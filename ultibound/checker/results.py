@@ -52,7 +52,7 @@ class Results:
         near = (
             self.radius.upper is not None and self.radius.upper - ball.concludes["radius"] <= SLACK * self.radius.upper
         )
-        self.whole = self.kind == "region" or (self.settled and near and self.escapes())
+        self.whole = self.kind == "region" or (self.settled and self.escapes() and near)
         self.gain = self.residual = Span(None, None)
         self.bound: Span | None = None
         if pair is not None:
