@@ -206,3 +206,7 @@ def test_data_files_stay_beside_the_claim(tmp_path: Path) -> None:
     assert "cannot be read" in refused_file(inside / "c.toml")
     (inside / "gaits.csv").write_text(CSV)
     assert read_claim(inside / "c.toml").libraries[0].axes == ("speed", "period")
+
+
+def test_a_constant_too_small_to_be_held_is_refused_at_once() -> None:
+    refused(swap("g = 9.81", 'g = "exp(-10**9)"'))

@@ -168,4 +168,6 @@ def _ends(ball: Any, op: str) -> Ends:
 
 def _fraction(x: Any) -> Fraction:
     mantissa, exponent = x.man_exp()
+    if abs(int(exponent)) > MAX_BITS:  # a denominator too long to be written down
+        raise Bad("a value too small or too large to be held; write it another way")
     return Fraction(int(mantissa)) * Fraction(2) ** int(exponent)
