@@ -296,3 +296,66 @@ that = "sensitivity(v, T) > -1"
     assert [r["verdict"] for r in results["requirements"]] == ["undecided", "undecided"]
     low, high = ends(results["requirements"][0]["value"])
     assert low <= -2 and high >= 1 and high - low < Fraction(301, 100)
+
+
+@pytest.mark.parametrize("constant, uncertain, at, nodes, by", [
+    ('c = "sinh(0)"', "d = [0, 0]", "c", "-1,1\n0,0\n1,1\n", "c"), ('c = "cos(0)"', "d = [0, 0]", "c", "0,1\n1,0\n2,1\n", "c"),
+    ("c = 0", "T = { values = [0] }", "sinh(T)", "-1,1\n0,0\n1,1\n", "T"), ("c = 0", "T = [0, 0]", "asin(T)", "-1,1\n0,0\n1,1\n", "T"),
+])  # fmt: skip
+@pytest.mark.parametrize("relation", ["> 0", "< 0"])
+def test_an_irrational_axis_on_a_grid_line_counts_both_sides(
+    constant: str, uncertain: str, at: str, nodes: str, by: str, relation: str
+) -> None:
+    """Slopes -1 below and +1 above the node, which a one-sided enclosure of the axis would hide."""
+    text = f"""
+format = 1
+[constants]
+{constant}
+[state]
+v = [-1, 1]
+[uncertain]
+{uncertain}
+[[library]]
+file = "g.csv"
+at = {{ u = "{at}" }}
+[next]
+v = "0.5*v + 0.1*y"
+[target]
+v = 0
+[[require]]
+that = "sensitivity(v, {by}) {relation}"
+"""
+    (entry,) = proved(text, data={"g.csv": "u,y\n" + nodes}).results["requirements"]
+    low, high = ends(entry["value"])
+    assert entry["verdict"] == "undecided"
+    assert low <= Fraction(-1, 10) and high >= Fraction(1, 10) and high - low < Fraction(201, 1000)
+
+
+def test_irrational_held_ranges_do_not_refute_what_is_true_with_equality() -> None:
+    """The target moves by exactly 2 sqrt 2: `residual <= sqrt(8)` is true, so no attained value may lie beyond."""
+    text = """
+format = 1
+route = "slope"
+[state]
+v = [-20, 20]
+[uncertain]
+h = { range = ["-sqrt(2)", "sqrt(2)"], held = true, change = 100 }
+[next]
+v = "0.5*(v - h) + h"
+[target]
+v = "h"
+[[require]]
+that = "residual <= sqrt(8)"
+[[require]]
+that = "residual <= 2.8284271247461900977"
+"""
+    results = proved(text).results
+    assert [r["verdict"] for r in results["requirements"]] == ["undecided", "proved"]
+    low, high = ends(results["residual"])
+    assert low**2 <= 8 <= high**2 and high - low < Fraction(1, 10**18)
+
+
+def test_a_ball_of_no_radius_proves_no_gain() -> None:
+    """A target at the edge of a region that is left: one point is no set to contract on."""
+    text = 'format = 1\n[state]\nv = [0, 1]\n[next]\nv = "2*v"\n[target]\nv = 0\n[[require]]\nthat = "gain < 3"\n[[require]]\nthat = "value(v) < 1"\n'
+    assert [r["verdict"] for r in proved(text).results["requirements"]] == ["undecided", "undecided"]

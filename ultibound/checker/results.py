@@ -52,7 +52,9 @@ class Results:
         near = (
             self.radius.upper is not None and self.radius.upper - ball.concludes["radius"] <= SLACK * self.radius.upper
         )
-        self.whole = self.kind == "region" or (self.settled and self.escapes() and near)
+        self.whole = self.kind == "region" or (
+            self.settled and self.escapes() and near and ball.concludes["radius"] > 0
+        )
         self.gain = self.residual = Span(None, None)
         self.bound: Span | None = None
         if pair is not None:
