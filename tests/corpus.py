@@ -88,6 +88,10 @@ CASES: list[Case] = []
 
 
 def add(accepted: bool, name: str, text: str, data: dict[str, str] | None = None, **settings: str) -> None:
+    add_set(accepted, name, text, settings, data)
+
+
+def add_set(accepted: bool, name: str, text: str, settings: dict[str, str], data: dict[str, str] | None = None) -> None:
     CASES.append(Case(f"{'good' if accepted else 'bad'}: {name}", text, accepted, data or {}, settings))
 
 
@@ -354,6 +358,133 @@ for name, text in (
     ("kappa", "nan"),
     ("kappa", "0.2 " + "x"),
 ):
-    add(False, f"set {name}={text}", BASE, **{name: text})
+    add_set(False, f"set {name}={text}", BASE, {name: text})
 for depth in (40, 65, 100_000):
     add(False, f"nested lists {depth}", BASE + "[[require]]\nthat = " + "[" * depth + "]" * depth + "\n")
+
+# settings as expressions: blanks and a minus after a digit are none of a number's spelling
+for text in (
+    "1-2",
+    "3-2-1",
+    " 0.2",
+    "0.2 ",
+    "0.2\n",
+    "0.2\t",
+    "2*pi",
+    "sqrt(2)",
+    "-1e3",
+    "--1",
+    "(1)",
+    "2**-1",
+    "exp(0)",
+):
+    add_set(True, f"set kappa={text!r}", BASE, {"kappa": text})
+for text in (
+    "+1",
+    "t",
+    "v",
+    "kappa",
+    "1E5",
+    "9**9**9",
+    "target(v)",
+    "dt(1)",
+    "1 2",
+    "inf",
+    "0x1",
+    "\ud800",
+    "9" * 4001,
+    "1" * 10001,
+):
+    add_set(False, f"set kappa={text[:20]!r}", BASE, {"kappa": text})
+
+# inexact constants: enclosed on an absolute grid, refused where that cannot tell them from a point without value
+for text in (
+    "exp(-1e9)",
+    "exp(1e3)",
+    "sin(1e300)",
+    "tanh(1e9)",
+    "asin(sin(pi/2))",
+    "1e-9999*pi",
+    "sqrt(1e-9999)",
+    "pi**0",
+    "0*pi",
+    "2**exp(0)",
+    "2**(0*pi)",
+    "2**cos(0)",
+    "log(exp(-1))",
+    "0**0",
+    "sqrt(0)",
+    "asin(1)",
+):
+    add(True, f"inexact {text}", BASE.replace("g = 9.81", f'g = 9.81\nc = "{text}"'))
+for text in (
+    "1/exp(-300)",
+    "log(1e-9999)",
+    "log(exp(-300))",
+    "sin(1e9999)",
+    "exp(1e9)",
+    "1/(pi - pi)",
+    "tan(pi/2)",
+    "0**-1",
+    "0**-0.5",
+    "sqrt(sqrt(2) - sqrt(2))",
+    "1e9999*pi",
+    "2**(pi - pi)",
+    "2**(pi/pi)",
+    "2**2**2**3",
+    "1/sin(0)",
+):
+    add(False, f"inexact {text}", BASE.replace("g = 9.81", f'g = 9.81\nc = "{text}"'))
+for low, high, well in (
+    ("pi", "pi", True),
+    ("pi", "pi + 0", False),
+    ("pi - pi", "1", True),
+    ("pi", "sqrt(2)*sqrt(2)", False),
+    ("exp(0)", "1", True),
+):
+    add(well, f"range {low} {high}", swap("[0.36, 0.40]", f'["{low}", "{high}"]'))
+
+# limits met exactly, and passed by one
+for limit in (64, 65):
+    for name, text in (
+        ("parentheses", "(" * limit + "v" + ")" * limit),
+        ("calls", "sin(" * limit + "v" + ")" * limit),
+        ("minus signs", "-" * limit + "v"),
+        ("targets", "(" * (limit - 1) + "target(v)" + ")" * (limit - 1)),
+    ):
+        add(limit == 64, f"{limit} {name}", swap("v/2 + foot", text))
+for limit in (10_000, 10_001):
+    add(limit == 10_000, f"{limit} characters", swap("v/2 + foot", "v" + " " * (limit - 1)))
+    add(limit == 10_000, f"{limit} characters of a requirement", require("settles" + " " * (limit - 7)))
+    add(limit == 10_000, f"{limit} values", swap("[0.36, 0.40]", "{ values = [" + "1," * limit + "] }"))
+for limit in (1000, 1001):
+    add(limit == 1000, f"{limit} requirements", BASE + '[[require]]\nthat = "settles"\n' * limit)
+for limit in (2**20, 2**20 + 1):
+    add(limit == 2**20, f"{limit} bytes", BASE + "#" * (limit - len(BASE)))
+add(True, "4000 digits", BASE.replace("g = 9.81", f"g = 9.81\nc = {'9' * 4000}e9999"))
+add(False, "4001 digits with a point", BASE.replace("g = 9.81", f"g = 9.81\nc = 0.{'1' * 4000}"))
+for limit in (4, 5):
+    names = "abcde"[:limit]
+    rows = "".join(",".join(str(k >> i & 1) for i in range(limit)) + ",1\n" for k in range(2**limit))
+    table = f'{BASE}[library]\nfile = "a.csv"\nat = {{ {", ".join(f"{a} = 0.5" for a in names)} }}\n'
+    add(limit == 4, f"{limit} axes", table, {"a.csv": ",".join(names) + ",lift\n" + rows})
+
+# dotted keys, texts over several lines, targets of each other
+add(True, "dotted keys", 'format = 1\nstate.v = [0, 1]\nnext.v = "v/2"\ntarget.v = 0\n')
+add(False, "a dotted key of many parts", BASE + "a." * 5000 + "a = 1\n")
+add(True, "an expression over lines", swap('"v/2 + foot"', '"""\nv/2\n + foot"""'))
+add(False, "a text without an end", BASE + 'x = """\n')
+add(True, "spellings inside texts and comments", top('notes = "1_0 +3 [[[["') + "# 0x1F [[[ '''\n")
+add(False, "an underscore in a list", swap("[0.36, 0.40]", "[1_0]"))
+TWO = 'format = 1\n[state]\na = [0, 1]\nb = [0, 1]\n[next]\na = "a/2"\nb = "b/2"\n[target]\na = "target(b)/2"\nb = '
+add(True, "a target of another", TWO + "0.5\n")
+add(False, "targets of each other", TWO + '"target(a)"\n')
+add(False, "a stance with an empty name", BASE + '[stance.""]\nthen = ""\n')
+add(False, "a stance with an empty name alone", BASE + '[stance.""]\n')
+add(True, "a single stance", BASE + '[stance.only]\nthen = "only"\n')
+add(
+    True,
+    "a stance's own range of a shared state",
+    swap("state = { vy = [-0.1, 0.6] }", "state = { vy = [-0.1, 0.6], vx = [0, 2] }", STANCES),
+)
+add(False, "a column of a lone surrogate", LIBRARY, {"gaits.csv": CSV + "\ud800\x01"})

@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import os
 import time
+from fractions import Fraction
 from pathlib import Path
 
 import pytest
@@ -208,5 +209,29 @@ def test_data_files_stay_beside_the_claim(tmp_path: Path) -> None:
     assert read_claim(inside / "c.toml").libraries[0].axes == ("speed", "period")
 
 
-def test_a_constant_too_small_to_be_held_is_refused_at_once() -> None:
-    refused(swap("g = 9.81", 'g = "exp(-10**9)"'))
+def test_a_constant_too_small_to_be_told_from_zero_is_enclosed_at_once() -> None:
+    """As the checker does: the grid of inexact values is absolute, and what divides by such a value is refused."""
+    start = time.monotonic()
+    low, high = parse_claim(swap("g = 9.81", 'g = "exp(-10**9)"'), {}, {}, "c").values["g"]
+    assert low == 0 < high < Fraction(1, 2**150) and time.monotonic() - start < 1
+    refused(swap("g = 9.81", 'g = "1/exp(-10**9)"'))
+    refused(swap("g = 9.81", 'g = "exp(10**9)"'))
+
+
+@pytest.mark.parametrize("text", [
+    BASE + '\\"""\n' * 150_000, BASE + "a." * 400_000 + "a = 1\n", BASE + '"a".' * 200_000 + "a = 1\n", "\n".join(f"titl{k} = 1" for k in range(60_000)) + "\n" + BASE,
+    BASE + "[constants.x]\n" + "\n".join(f'a{k} = "a{k + 1}"' for k in range(20_000)), swap("g = 9.81", "g = 9.81\n" + "\n".join(f'a{k} = "a{k + 1}"' for k in range(30_000))),
+    swap("[define]", "[define]\n" + "\n".join(f'a{k} = "b{k}"' for k in range(30_000))), swap("[define]", "[define]\n" + "\n".join(f'a{k} = "a{(k + 1) % 30_000}"' for k in range(30_000))),
+    BASE + "\n".join(f'[stance.s{k}]\nthen = "q"' for k in range(15_000)), swap("[define]", "[define]\n" + "\n".join(f"a{k} = 1" for k in range(10_000))) + "\n".join(f'[stance.s{k}]\nthen = "s0"\ndefine = {{ q = 1 }}' for k in range(9000)),
+], ids=range(10))  # fmt: skip
+def test_long_hostile_files_are_refused_quickly(text: str) -> None:
+    assert len(text) < 2**20
+    refused(text, limit=3)
+
+
+@pytest.mark.parametrize(
+    "expression", ["+".join(["1e-9999*3e-9999*1e-9999"] * 300), "+".join(["(3/7)**64*(5/11)**64*1e9999/3e-9999"] * 200)]
+)
+def test_long_numbers_have_a_budget(expression: str) -> None:
+    lines = refused(swap("[define]", "[define]\n" + "\n".join(f'a{k} = "{expression}"' for k in range(90))), limit=5)
+    assert lines == ["walker.toml: the numbers of this claim are too long to be worked out; shorten them"]

@@ -7,11 +7,11 @@ from collections.abc import Callable
 from dataclasses import dataclass
 from fractions import Fraction
 
-from .errors import Bad, nearest
+from .errors import Bad, Unknown
+from .numbers import exact_number
 
 MAX_LENGTH = 10_000
 MAX_DEPTH = 64
-MAX_DIGITS = 4_000
 MAX_POWER = 64
 SMOOTH = ("sqrt", "exp", "log", "sin", "cos", "tan", "asin", "acos", "atan", "sinh", "cosh", "tanh")
 FUNCTIONS: dict[str, tuple[int, int | None]] = {
@@ -24,7 +24,6 @@ QUANTITIES = (
 )  # fmt: skip
 RESERVED = frozenset((*FUNCTIONS, *QUANTITIES, "target", "t", "pi", "next", "during"))
 NAME = re.compile(r"[A-Za-z][A-Za-z0-9_]{0,39}\Z")
-NUMBER = re.compile(r"(?P<units>0|[1-9][0-9]*)(?:\.(?P<decimals>[0-9]+))?(?:e(?P<exponent>-?[0-9]{1,4}))?\Z")
 _WORD = re.compile(r"[A-Za-z0-9_.]+")
 _BLANK = " \t\r\n"
 _SYMBOLS = ("**", "<=", ">=", "+", "-", "*", "/", "(", ")", ",", "<", ">")
@@ -56,22 +55,6 @@ def _mention(node: Node) -> str:
     if node.op == "target":
         return f"target({node.name})"
     return "t" if node.op == "time" else str(node.name) if node.op == "name" else ""
-
-
-def exact_number(text: str) -> Fraction:
-    """The number a text spells, sign included; raises Bad with the rule it breaks."""
-    body = text.removeprefix("-")
-    if len(body) > MAX_DIGITS + 10:
-        raise Bad(f"a number of more than {MAX_DIGITS} digits; shorten it")
-    found = NUMBER.match(body)
-    if found is None:
-        raise Bad(f"{text[:40]!r} is not a number here; write it like 0, -7, 3.25 or 1e-3")
-    digits = found["units"] + (found["decimals"] or "")
-    if len(digits) > MAX_DIGITS:
-        raise Bad(f"a number of more than {MAX_DIGITS} digits; shorten it")
-    shift = int(found["exponent"] or 0) - len(found["decimals"] or "")
-    value = Fraction(int(digits)) * Fraction(10) ** shift
-    return -value if text.startswith("-") else value
 
 
 def tokenised(text: str) -> list[tuple[str, int]]:
@@ -229,7 +212,7 @@ class Parser:
             self._depth -= 1
             return self._add(name, name=state)
         if name not in FUNCTIONS:
-            raise Bad(f"{place}: {name[:60]!r} is not a function{nearest(name, FUNCTIONS)}")
+            raise Unknown(f"{place}: {name[:60]!r} is not a function", name, FUNCTIONS)
         if name == "dt" and not self.moving:
             raise Bad(f"{place}: dt(…) is a rate within a stance and needs [dynamics]")
         args = [self._sum()]

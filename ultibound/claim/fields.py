@@ -7,13 +7,14 @@ from contextlib import contextmanager
 from fractions import Fraction
 from typing import Any, TypeVar
 
-from .constants import check_constant_parts, constant
-from .errors import Bad, Problem, nearest
-from .expression import NAME, RESERVED, Expression, Node, Parser, exact_number
+from .constants import Work, check_constant_parts, constant
+from .errors import Bad, Follows, Problem, Unknown
+from .expression import NAME, RESERVED, Expression, Node, Parser
 from .model import Ends, Range
-from .toml import Spelled
+from .numbers import Spelled, exact_number
 
 T = TypeVar("T")
+SUGGESTIONS = 30  # faults of a file that name the nearest known name: each takes some milliseconds
 
 
 class Fields:
@@ -23,6 +24,9 @@ class Fields:
         self.problems: list[Problem] = []
         self.values: dict[str, Ends] = {}
         self.declared: dict[str, str] = {}
+        self.failed: set[str] = set()  # constants and gains without a value, their fault noted
+        self.work = Work()
+        self.told: set[str] = set()  # shared sections whose faults are told
         self.moving = False
 
     @contextmanager
@@ -31,13 +35,18 @@ class Fields:
         try:
             yield
         except Bad as why:
-            self.problems.append(Problem(place, str(why)))
+            self.note(place, why)
+
+    def note(self, place: str, why: Bad) -> None:
+        if not isinstance(why, Follows):
+            short = isinstance(why, Unknown) and len(self.problems) >= SUGGESTIONS
+            self.problems.append(Problem(place, why.args[0] if short else str(why)))
 
     def attempt(self, place: str, action: Callable[[], T], otherwise: T) -> T:
         try:
             return action()
         except Bad as why:
-            self.problems.append(Problem(place, str(why)))
+            self.note(place, why)
             return otherwise
 
     def table(self, value: Any, place: str, allowed: tuple[str, ...] | None = None) -> dict[str, Any]:
@@ -46,9 +55,7 @@ class Fields:
             return {}
         for key in value if allowed is not None else ():
             if key not in (allowed or ()):
-                self.problems.append(
-                    Problem(f"{place}.{key[:60]}".lstrip("."), f"unknown key{nearest(key, allowed or ())}")
-                )
+                self.note(f"{place}.{key[:60]}".lstrip("."), Unknown("unknown key", key, allowed or ()))
         return {k: v for k, v in value.items() if allowed is None or k in allowed}
 
     def declare(self, name: str, section: str) -> None:
@@ -61,7 +68,7 @@ class Fields:
         self.declared[name] = section
 
     def exponent(self, e: Expression) -> Fraction:
-        low, high = constant(e, self.values)
+        low, high = constant(e, self.values, self.failed, self.work)
         if low != high:
             raise Bad("an exponent must be an exact number")
         return low
@@ -74,16 +81,18 @@ class Fields:
         if isinstance(value, bool) or not isinstance(value, (str, int)):
             raise Bad(f"{kind(value)} found, an expression in quotes or a number is expected")
         if not isinstance(value, str) or isinstance(value, Spelled):
-            return Expression(str(value), (Node("number", (), exact_number(str(value))),))
+            number = exact_number(str(value))
+            self.work.spend((number, number))
+            return Expression(str(value), (Node("number", (), number),))
         parser = self.parser(value)
         e = parser.expression()
         parser.end()
-        check_constant_parts(e)
+        check_constant_parts(e, self.work)
         return e
 
     def constant(self, value: Any) -> tuple[Expression, Ends]:
         e = self.expression(value)
-        return e, constant(e, self.values)
+        return e, constant(e, self.values, self.failed, self.work)
 
     def range(self, value: Any, strict: bool = False) -> Range:
         if not isinstance(value, list) or len(value) != 2:

@@ -7,8 +7,9 @@ from fractions import Fraction
 from itertools import product
 
 from .errors import Bad
-from .expression import NAME, RESERVED, Expression, exact_number
+from .expression import NAME, RESERVED, Expression
 from .model import Library
+from .numbers import ROW, exact_number
 
 MAX_BYTES = 64 * 2**20
 MAX_ROWS = 1_000_000
@@ -18,21 +19,26 @@ def parse_library(file: str, text: str, at: Mapping[str, Expression]) -> Library
     """The library of a file, its axes in the order of `at`. Raises Bad naming row and column."""
     lines = _lines(file, text)
     header = lines[0].split(",")
+    seen: set[str] = set()
     for name in header:
         if not NAME.match(name):
             raise Bad(f"{file}: row 1: {name[:40]!r} cannot be a column's name")
         if name in RESERVED:
             raise Bad(f"{file}: row 1: {name} is a reserved word; rename the column")
-        if header.count(name) > 1:
+        if name in seen:
             raise Bad(f"{file}: row 1: column {name} stands twice")
-    missing = [a for a in at if a not in header]
+        seen.add(name)
+    missing = [a for a in at if a not in seen]
     if missing:
         raise Bad(
-            f"{file}: row 1: there is no column {missing[0][:40]} for the axis; columns: {', '.join(header)[:200]}"
+            f"{file}: row 1: there is no column {missing[0][:40]} for the axis; columns: {', '.join(header[:12])}"
         )
     if len(at) == len(header):
         raise Bad(f"{file}: row 1: every column is an axis; at least one must be read")
     ranks = [header.index(a) for a in at]
+    for number, line in enumerate(lines[1:], 2):  # spellings first: converting a long file takes far longer
+        if not ROW.match(line):
+            _row(file, number, header, line)
     rows: dict[tuple[Fraction, ...], tuple[int, list[Fraction]]] = {}
     for number, line in enumerate(lines[1:], 2):
         values = _row(file, number, header, line)
@@ -64,7 +70,9 @@ def _lines(file: str, text: str) -> list[str]:
     plain = text.replace("\r\n", "\n")
     odd = next((c for c in plain if c < " " and c != "\n"), "")
     if odd:
-        raise Bad(f"{file}: byte {len(text[: text.index(odd)].encode())}: control character {odd!r}")
+        raise Bad(
+            f"{file}: byte {len(text[: text.index(odd)].encode('utf-8', 'surrogatepass'))}: control character {odd!r}"
+        )
     lines = plain.split("\n")
     if lines[-1] == "":
         lines.pop()

@@ -8,10 +8,11 @@ from collections.abc import Mapping
 from pathlib import Path
 from typing import Any
 
-from .errors import ClaimError
+from .declared import safe
+from .errors import ClaimError, Exhausted, Problem
 from .library import MAX_BYTES as MAX_DATA
 from .model import Claim
-from .sections import Sections, safe
+from .sections import Sections
 from .toml import MAX_BYTES, read_toml
 
 
@@ -21,16 +22,20 @@ def read_claim(path: str | os.PathLike[str], settings: Mapping[str, str] | None 
     Raises ClaimError with every fault found; nothing is evaluated as code.
     """
     place = Path(path)
-    text = _contents(place, MAX_BYTES, place.name)
+    name = place.name or str(place)
+    text = _contents(place, MAX_BYTES, name)
     raw, problems = read_toml(text)
     data: dict[str, str] = {}
     for file in [] if problems else _files(raw):
-        home = place.parent.resolve()
-        target = (home / file).resolve()
+        try:
+            home = place.parent.resolve()
+            target = (home / file).resolve()
+        except (OSError, RuntimeError):  # links in a circle
+            raise ClaimError.of(name, f"library.file {file[:60]}", "cannot be followed to a file") from None
         if not target.is_relative_to(home):
-            raise ClaimError.of(place.name, "library.file", f"{file[:60]} leads outside the folder of the claim")
-        data[file] = _contents(target, MAX_DATA, place.name, f"library.file {file[:60]}")
-    return parse_claim(text, settings or {}, data, place.name)
+            raise ClaimError.of(name, "library.file", f"{file[:60]} leads outside the folder of the claim")
+        data[file] = _contents(target, MAX_DATA, name, f"library.file {file[:60]}")
+    return parse_claim(text, settings or {}, data, name)
 
 
 def parse_claim(text: str, settings: Mapping[str, str], data: Mapping[str, str], place: str) -> Claim:
@@ -38,18 +43,25 @@ def parse_claim(text: str, settings: Mapping[str, str], data: Mapping[str, str],
     raw, problems = read_toml(text)
     if problems:
         raise ClaimError(place, problems)
-    return Sections(text, raw, settings, data, place).claim()
+    sections = Sections(text, raw, settings, data, place)
+    try:
+        return sections.claim()
+    except Exhausted as why:
+        raise ClaimError(place, [*sections.problems, Problem("", str(why))]) from None
 
 
 def _contents(path: Path, limit: int, file: str, place: str = "") -> str:
     """Text of a regular file within the limit."""
     try:
-        if not stat.S_ISREG(path.stat().st_mode):
-            raise ClaimError.of(file, place, "not a regular file; name a text file")
-        with path.open("rb") as stream:
+        # looked at once open, and opened without waiting: a FIFO put in its place meanwhile cannot hold us up
+        with open(path, "rb", opener=lambda p, flags: os.open(p, flags | os.O_NONBLOCK)) as stream:
+            if not stat.S_ISREG(os.fstat(stream.fileno()).st_mode):
+                raise ClaimError.of(file, place, "not a regular file; name a text file")
             found = stream.read(limit + 1)
-    except OSError as why:
-        raise ClaimError.of(file, place, f"cannot be read: {why.strerror or why}") from None
+    except IsADirectoryError:
+        raise ClaimError.of(file, place, "a directory, not a regular file; name a text file") from None
+    except (OSError, ValueError) as why:  # ValueError: a NUL in the path
+        raise ClaimError.of(file, place, f"cannot be read: {getattr(why, 'strerror', None) or why}") from None
     if len(found) > limit:
         raise ClaimError.of(file, place, f"more than {limit} bytes; the limit is {limit // 2**20} MiB")
     try:

@@ -5,7 +5,7 @@ from __future__ import annotations
 from dataclasses import replace
 
 from .constants import check_constant_parts
-from .errors import Bad, nearest
+from .errors import Bad, Unknown
 from .expression import QUANTITIES, Expression, Parser
 from .model import Requirement
 
@@ -21,7 +21,7 @@ def parse_requirement(parser: Parser) -> Requirement:
     """The requirement a parser's text states. Raises Bad."""
     kind = parser.take()
     if kind not in QUANTITIES:
-        raise Bad(f"{kind[:60]!r} is not a quantity{nearest(kind, QUANTITIES)}")
+        raise Unknown(f"{kind[:60]!r} is not a quantity", kind, QUANTITIES)
     r = Requirement(parser.text, kind)
     if kind == "settles":
         parser.end()

@@ -7,19 +7,17 @@ import tomllib
 from typing import Any
 
 from .errors import Bad, Problem
-from .expression import MAX_DEPTH, exact_number
+from .expression import MAX_DEPTH
+from .numbers import Spelled, spelled
 
 MAX_BYTES = 2**20
 _PIECES = re.compile(
-    r'(?P<text>"""(?:[^"\\]|\\.|"(?!""))*"{3,5}|\'\'\'(?:[^\']|\'(?!\'\'))*\'{3,5}|"(?:[^"\\\n]|\\.)*"|\'[^\'\n]*\')'
+    r'(?P<text>"""(?:[^"\\]|\\.|"(?!""))*"{3,5}|\'\'\'(?:[^\']|\'(?!\'\'))*\'{3,5}|"(?!"")(?:[^"\\\n]|\\.)*"|\'(?!\'\')[^\'\n]*\')'
+    r"|(?P<open>\"\"\"|''')"  # a text without an end; looking for each one's anew would take long
     r"|(?P<comment>\#[^\n]*)|(?P<bracket>[\[\]{}])|(?P<word>[^\s\"'\#\[\]{}=,]+)|.",
     re.DOTALL,
 )
 _CONTROL = re.compile("[\x00-\x08\x0b\x0c\x0e-\x1f\x7f\ud800-\udfff]")
-
-
-class Spelled(str):
-    """A number with a point or exponent, as the file spells it."""
 
 
 def read_toml(text: str) -> tuple[dict[str, Any], list[Problem]]:
@@ -47,9 +45,17 @@ def read_toml(text: str) -> tuple[dict[str, Any], list[Problem]]:
 
 def _spellings(text: str) -> list[Problem]:
     """Numbers that TOML would take and a claim does not, and nesting."""
-    depth, found = 0, []
+    depth, dots, line, seen, found = 0, 0, 1, 0, []
     for match in _PIECES.finditer(text):
         piece = match[0]
+        if match.lastgroup == "open":
+            return [Problem(f"line {_line(text, match.start())}", f"the text that starts with {piece} does not end")]
+        if match.lastgroup == "word":
+            dots += piece.count(".")
+            if dots > MAX_DEPTH:  # the TOML reader takes time in the square of a dotted key's parts
+                return [Problem(f"line {_line(text, match.start())}", f"a key of more than {MAX_DEPTH} parts")]
+        elif piece in "\n=,[]{}":
+            dots = 0
         if match.lastgroup == "bracket":
             depth += 1 if piece in "[{" else -1
             if depth > MAX_DEPTH:
@@ -58,9 +64,12 @@ def _spellings(text: str) -> list[Problem]:
             piece[0] in "+-0123456789" or (piece in ("inf", "nan") and not _is_key(text, match.end()))
         ):
             try:
-                exact_number(piece)
+                spelled(piece)
             except Bad as why:
-                found.append(Problem(f"line {_line(text, match.start())}", str(why)))
+                line += text.count("\n", seen, match.start())
+                seen = match.start()
+                key = re.match(r"[ \t]*=", text[match.end() : match.end() + 20])
+                found.append(Problem(f"line {line}", f"{piece[:40]!r} is not a name" if key else str(why)))
     return found
 
 
