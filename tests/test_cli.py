@@ -102,7 +102,6 @@ EXTRA
     ("asin(2*v)", "", "asin of a number beyond 1"),
     ("v/2 + a*b*c", "", "combinations"),
     ("v/2", "[[require]]\nthat = 'value(log(v))'", "logarithm"),
-    ("abs(v)/2", "", "abs cannot be proved yet"),
     ("v/2", "horizon = 2", "horizon"),
     ("v/2", "[[require]]\nthat = 'push(v) >= 1'", "push cannot be proved yet"),
 ])  # fmt: skip

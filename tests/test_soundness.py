@@ -100,7 +100,8 @@ cells = 20000
 
 
 FUNCTIONS = ["sin({})", "cos({})", "tanh({})", "exp(0.3*{})", "atan({})", "sqrt(2 + {})", "log(3 + {})", "1/(3 + {})", "({})**2",
-             "({})**3", "sinh(0.5*{})", "cosh({})", "asin(0.3*{})", "acos(0.3*{})", "tan(0.4*{})", "(2 + {})**1.5", "(2 + {})**-2"]  # fmt: skip
+             "({})**3", "sinh(0.5*{})", "cosh({})", "asin(0.3*{})", "acos(0.3*{})", "tan(0.4*{})", "(2 + {})**1.5", "(2 + {})**-2",
+             "abs({})", "max({}, 0.1)", "min(0.2, {}, 0.5*d)", "clip({}, -0.2, 0.3)", "(0.2 + abs({} - 0.1))**1.5"]  # fmt: skip
 
 
 @pytest.mark.parametrize("seed", range(CLAIMS))
@@ -128,6 +129,7 @@ v = "0.2*h"
         return
     names = {n: getattr(np, {"asin": "arcsin", "acos": "arccos", "atan": "arctan"}.get(n, n)) for n in
              ("sin", "cos", "tanh", "exp", "atan", "sqrt", "log", "sinh", "cosh", "asin", "acos", "tan")}  # fmt: skip
+    names |= {"abs": np.abs, "max": np.maximum, "clip": np.clip, "min": lambda *x: np.minimum(np.minimum(*x[:2]), x[-1])}
     step = eval(f"lambda v, d, h: {expression}", names)  # a test's own text, not input
     generator = np.random.default_rng(seed)
     bound, size = float(ends(results["bound"])[1]), 3000

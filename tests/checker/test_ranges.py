@@ -19,6 +19,10 @@ SAMPLES = [
     ("cosh(T)*v - sinh(T)*(v*(cosh(T) - 1)/sinh(T))", lambda v, T: np.cosh(T) * v - v * (np.cosh(T) - 1)),
     ("tanh(v + T)*atan(v) + log(2 + v*T)", lambda v, T: np.tanh(v + T) * np.arctan(v) + np.log(2 + v * T)),
     ("asin(v/3)*acos(T/3) + tan(v*T/3)", lambda v, T: np.arcsin(v / 3) * np.arccos(T / 3) + np.tan(v * T / 3)),
+    ("abs(v - T)*T + max(v**2, 0.3*T, v/2)", lambda v, T: np.abs(v - T) * T + np.maximum(np.maximum(v**2, 0.3 * T), v / 2)),
+    ("clip(2*v, -T, sin(3*v) + T)", lambda v, T: np.minimum(np.maximum(2 * v, -T), np.sin(3 * v) + T)),
+    ("min(abs(v), max(T - abs(v), v*T))", lambda v, T: np.minimum(np.abs(v), np.maximum(T - np.abs(v), v * T))),
+    ("log(max(v, 0.05))*T + sqrt(abs(v) + T)", lambda v, T: np.log(np.maximum(v, 0.05)) * T + np.sqrt(np.abs(v) + T)),
     ("(2 + v)**2.5*(1 + T)**-2", lambda v, T: (2 + v) ** 2.5 * (1 + T) ** -2.0),
 ]  # fmt: skip
 

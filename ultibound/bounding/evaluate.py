@@ -11,7 +11,9 @@ import numpy as np
 
 from ..claim.model import Library
 from ..stepmap.program import Program, Step
-from .intervals import UNARY, Branch, Floats, Pair, Table, div, mul, power
+from .intervals import UNARY, Branch, Floats, Pair, Table, div, hull, mul, power
+
+Corner = tuple[str, int, int]  # "max" or "min" and the registers of its two branches
 
 
 @dataclass(frozen=True, slots=True)
@@ -25,6 +27,14 @@ class Run:
     curvature: dict[tuple[int, int], Pair]
     split: Any
     branches: dict[int, Branch]
+    sides: dict[Corner, tuple[Any, Any]]  # whether each branch of a corner is met, a box
+
+    def open(self) -> Any:
+        """Whether a corner met both branches, a box."""
+        met = np.zeros(len(self.low), bool)
+        for first, second in self.sides.values():
+            met |= first & second
+        return met
 
     def branches_of(self, rows: Any) -> dict[int, Branch]:
         """Cells met by the boxes of the given rows, for evaluating parts of them on the same branch."""
@@ -45,14 +55,23 @@ class Runner:
                 self._tables.setdefault((number, step.name), _table(libraries[number], step.name))
 
     def __call__(
-        self, low: Floats, high: Floats, gradient: bool = True, branches: dict[int, Branch] | None = None
+        self,
+        low: Floats,
+        high: Floats,
+        gradient: bool = True,
+        branches: dict[int, Branch] | None = None,
+        hold: dict[Corner, Any] | None = None,
     ) -> Run:
-        """Runs every step over boxes [low, high] of shape (boxes, variables); `branches` fixes library cells."""
+        """Runs every step over boxes [low, high] of shape (boxes, variables).
+
+        `branches` fixes library cells, `hold` the branch (0 or 1) of every corner, a box.
+        """
         count, wanted = len(low), [self.program.value, *self.program.checks]
         if gradient:
             wanted += [*self.program.gradient.values(), *self.program.curvature.values()]
         done: list[Pair] = []
         met: dict[int, Branch] = {}
+        sides: dict[Corner, tuple[Any, Any]] = {}
         with np.errstate(all="ignore"):
             for number, step in enumerate(self.program.steps[: max(wanted) + 1]):
                 if step.op == "reading":
@@ -60,6 +79,8 @@ class Runner:
                     fixed = branches.get(number) if branches else None
                     pair, met[number] = table.read([done[a] for a in step.args], step.orders, count, fixed)
                     done.append(pair)
+                elif step.op in ("abs", "max", "min", "pick"):
+                    done.append(_corner(step, done, sides, hold, count))
                 else:
                     done.append(self._step(step, done, low, high))
             defined = np.ones(count, bool)
@@ -79,7 +100,7 @@ class Runner:
         split = np.zeros(count, bool)
         for _, spans in met.values():
             split |= np.prod(spans, axis=0) > 1
-        return Run(*value, g_low, g_high, bends, split, met)
+        return Run(*value, g_low, g_high, bends, split, met, sides)
 
     def _step(self, step: Step, done: list[Pair], low: Floats, high: Floats) -> Pair:
         args = [done[a] for a in step.args]
@@ -104,6 +125,30 @@ class Runner:
                 return power(args[0], int(step.value or 1))
             case _:
                 return UNARY[step.op](args[0])
+
+
+def _corner(
+    step: Step, done: list[Pair], sides: dict[Corner, tuple[Any, Any]], hold: dict[Corner, Any] | None, count: int
+) -> Pair:
+    """A corner, or the derivative of the branch it takes: hulls where both are met (proofs/corners.md)."""
+    kind = "min" if "min" in (step.op, step.name) else "max"
+    key = kind, step.args[0], step.args[1]
+    a, b, *slopes = (done[k] for k in step.args)
+    first, second = slopes or (a, b)
+    if hold is not None:
+        take = hold[key] == 0
+        return np.where(take, first[0], second[0]), np.where(take, first[1], second[1])
+    if key not in sides:
+        below, above = (a[1] < b[0], b[1] < a[0]) if kind == "max" else (b[1] < a[0], a[1] < b[0])
+        sides[key] = np.broadcast_to(~below, (count,)), np.broadcast_to(~above, (count,))
+    if not slopes:
+        pick = np.maximum if kind == "max" else np.minimum
+        low = pick(a[0], b[0])
+        return np.maximum(low, 0.0) if step.op == "abs" else low, pick(a[1], b[1])
+    one, other = sides[key]
+    low, high = hull(first, second)
+    low = np.where(one & other, low, np.where(one, first[0], second[0]))
+    return low, np.where(one & other, high, np.where(one, first[1], second[1]))
 
 
 def _finite(pair: Pair, count: int, defined: Any) -> Pair:

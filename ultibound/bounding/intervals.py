@@ -20,6 +20,10 @@ def mul(a: Pair, b: Pair) -> Pair:
     return np.minimum(np.minimum(p, q), np.minimum(r, s)), np.maximum(np.maximum(p, q), np.maximum(r, s))
 
 
+def hull(a: Pair, b: Pair) -> Pair:
+    return np.minimum(a[0], b[0]), np.maximum(a[1], b[1])
+
+
 def div(a: Pair, b: Pair) -> Pair:
     through = (b[0] <= 0) & (b[1] >= 0)
     return mul(a, (np.where(through, np.nan, 1 / b[1]), np.where(through, np.nan, 1 / b[0])))

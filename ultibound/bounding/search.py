@@ -16,12 +16,13 @@ from typing import Any
 import numpy as np
 
 from ..claim.obligations import Ends, Obligation
-from .evaluate import Run, Runner, to_float
+from .evaluate import Corner, Run, Runner, to_float
 from .intervals import Floats
 
 BATCH = 4096
 SHARE = 0.6  # of the gap is for the search; the rest is for the checker's own way of evaluating
 NUDGE = 2**36  # a point at the end of a cell moves inside by this share of its box
+MOST_OPEN = 5  # corners a box may meet for its branches to be told apart, as in the checker
 DIRECT, CENTRED, MONOTONE, SECOND = "d", "c", "m", "s"
 Point = dict[str, Fraction]
 
@@ -158,50 +159,85 @@ def _bisect(boxes: _Boxes, live: Any, variable: Any) -> Any:
 
 def _examine(runner: Runner, boxes: _Boxes, part: Any, best: tuple[_Best, _Best], derivative: bool) -> Floats:
     """Bounds of a batch by every form; improves the attained values; what splitting by each variable would gain."""
-    low, high = boxes.low[part], boxes.high[part]
-    n = len(part)
-    run = runner(low, high)
+    whole = runner(boxes.low[part], boxes.high[part])
+    case = _cases(whole, part, derivative)
+    low, high = boxes.low[part][case.owner], boxes.high[part][case.owner]
+    n = len(low)
+    run = whole if case.hold is None else runner(low, high, hold=case.hold)
     g_low, g_high = run.gradient_low, run.gradient_high
-    usable = ~run.split if derivative else np.ones(n, bool)  # proofs/forms.md: one cell for derivatives of derivatives
+    usable = case.smooth & ~run.split if derivative else np.ones(n, bool)  # proofs/forms.md (7), corners.md (3)
     rise = (g_low >= 0) & usable[:, None]
     fall = (g_high <= 0) & usable[:, None] & ~rise
     up = np.where(rise, 1, np.where(fall, -1, 0))
     choice = np.concatenate([up, -up])  # upper faces, then lower faces
     low2, high2 = np.tile(low, (2, 1)), np.tile(high, (2, 1))
     f_low, f_high = np.where(choice == 1, high2, low2), np.where(choice == -1, low2, high2)
-    # a derivative jumps at grid lines: faces and centres keep the branch of their box
+    # a derivative jumps at grid lines and corners: faces and centres keep the branch of their box
     rows = np.tile(np.arange(n), 3)
-    face = runner(f_low, f_high, branches=run.branches_of(rows[: 2 * n]) if derivative else None)
+    kept = run.branches_of(rows) if derivative else None
+    face = runner(f_low, f_high, branches=run.branches_of(rows[: 2 * n]) if derivative else None, hold=case.held(2))
     centre = 0.5 * (f_low + f_high)
-    whole = 0.5 * (low + high)
-    points = np.concatenate([centre, whole])
-    at = runner(points, points, gradient=False, branches=run.branches_of(rows) if derivative else None)
+    points = np.concatenate([centre, 0.5 * (low + high)])
+    at = runner(points, points, gradient=False, branches=kept, hold=case.held(3))
     radius = 0.5 * (f_high - f_low)
     reach = _reach(radius, face.gradient_low, face.gradient_high)
     plain = _reach(0.5 * (high - low), g_low, g_high)
     ok2 = np.tile(usable, 2) & ~(face.split if derivative else np.zeros(2 * n, bool))
     reach, plain = np.where(ok2, reach, np.inf), np.where(usable, plain, np.inf)
-    boxes.upper[part] = np.fmin(np.fmin(run.high, face.high[:n]), at.high[:n] + reach[:n])
-    boxes.lower[part] = np.fmax(np.fmax(run.low, face.low[n:]), at.low[n : 2 * n] - reach[n:])
-    columns = [
-        run.low,
-        run.high,
-        at.low[2 * n :] - plain,
-        at.high[2 * n :] + plain,
-        boxes.lower[part],
-        boxes.upper[part],
-    ]
+    at_low, at_high = at.low[2 * n :] - plain, at.high[2 * n :] + plain
+    tops = np.fmin(np.where(usable | ~derivative, face.high[:n], np.inf), at.high[:n] + reach[:n])
+    bottoms = np.fmax(np.where(usable | ~derivative, face.low[n:], -np.inf), at.low[n : 2 * n] - reach[n:])
+    boxes.upper[part] = np.fmin(whole.high, case.most(tops))
+    boxes.lower[part] = np.fmax(whole.low, -case.most(-bottoms))
+    columns = [whole.low, whole.high, -case.most(-at_low), case.most(at_high), boxes.lower[part], boxes.upper[part]]
     boxes.plain[part] = np.stack(columns, axis=1)
     if run.curvature and not derivative:
         low_s, high_s = _second_order(runner, run, low, high)
         boxes.lower[part] = np.fmax(boxes.lower[part], low_s)
         boxes.upper[part] = np.fmin(boxes.upper[part], high_s)
-    best[0].offer(_known(at.low[:n]), part, choice[:n])
-    best[1].offer(_known(-at.high[n : 2 * n]), part, choice[n:])
+    if case.hold is not None:  # only what the map itself takes is attained
+        at = runner(centre, centre, gradient=False, branches=run.branches_of(rows[: 2 * n]))
+    best[0].offer(_known(at.low[:n]), part[case.owner], choice[:n])
+    best[1].offer(_known(-at.high[n : 2 * n]), part[case.owner], choice[n:])
     with np.errstate(invalid="ignore"):  # an infinite slope over an edge of no width
         span = np.maximum(np.abs(face.gradient_low), np.abs(face.gradient_high)) * radius
     span = np.where(radius > 0, span, 0.0)
-    return np.maximum(span[:n], span[n:])
+    return case.most(np.maximum(span[:n], span[n:]))
+
+
+@dataclass(frozen=True)
+class _Cases:
+    """Boxes once for every choice of branches at the corners they meet; `smooth`: not too many of them."""
+
+    owner: Any  # row of the box, a case
+    starts: Any
+    smooth: Any
+    hold: dict[Corner, Any] | None
+
+    def held(self, times: int) -> dict[Corner, Any] | None:
+        return None if self.hold is None else {k: np.tile(x, times) for k, x in self.hold.items()}
+
+    def most(self, values: Floats) -> Floats:
+        """The largest value over the cases of each box."""
+        return values if self.hold is None else np.maximum.reduceat(values, self.starts, axis=0)
+
+
+def _cases(run: Run, part: Any, derivative: bool) -> _Cases:
+    n = len(part)
+    if not derivative or not run.sides:
+        return _Cases(np.arange(n), np.arange(n), np.ones(n, bool), None)
+    both = {k: first & second for k, (first, second) in run.sides.items()}
+    count = np.sum(list(both.values()), axis=0)
+    smooth = count <= MOST_OPEN
+    times = np.where(smooth, 2 ** np.minimum(count, MOST_OPEN), 1)
+    owner, starts = np.repeat(np.arange(n), times), np.cumsum(times) - times
+    rank, shift = np.arange(len(owner)) - starts[owner], np.zeros(n, int)
+    hold = {}
+    for k, (first, _) in run.sides.items():
+        decided = np.where(first, 0, 1)[owner]
+        hold[k] = np.where(both[k][owner], (rank >> shift[owner]) & 1, decided)
+        shift = shift + both[k]
+    return _Cases(owner, starts, smooth[owner], hold)
 
 
 def _second_order(runner: Runner, run: Run, low: Floats, high: Floats) -> tuple[Floats, Floats]:
@@ -219,7 +255,8 @@ def _second_order(runner: Runner, run: Run, low: Floats, high: Floats) -> tuple[
                 up += 0.5 * np.where(area > 0, np.maximum(most, 0.0) * area, 0.0)
             else:
                 down, up = down - spread, up + spread
-    return np.where(run.split, -np.inf, down), np.where(run.split, np.inf, up)
+    jumps = run.split | run.open()
+    return np.where(jumps, -np.inf, down), np.where(jumps, np.inf, up)
 
 
 def _reach(radius: Floats, g_low: Floats, g_high: Floats) -> Floats:

@@ -9,6 +9,7 @@ from bisect import bisect_left, bisect_right
 from collections.abc import Sequence
 from fractions import Fraction
 from itertools import product
+from math import prod
 from typing import Any
 
 from .exact import Exact
@@ -21,7 +22,8 @@ Ends = tuple[Fraction, Fraction]
 Box = list[Ends]
 Interval = Any  # a pair of whole numbers (Scaled) or of fractions (Exact)
 Arithmetic = Any  # Scaled or Exact
-RATIONAL = frozenset(["number", "variable", "mark", "neg", "add", "sub", "mul", "div", "power"])
+RATIONAL = frozenset(["number", "variable", "mark", "neg", "add", "sub", "mul", "div", "power", "abs", "min", "max"])
+MOST_BRANCHES = 32
 DEEPEST = 300
 SMOOTH = frozenset(["sqrt", "exp", "log", "sin", "cos", "tan", "asin", "acos", "atan", "sinh", "cosh", "tanh"])
 
@@ -52,6 +54,8 @@ class Evaluator:
         self.several = False
         self.direction: int | None = None  # a variable by which d is taken instead of the marked name
         self.branch: dict[int, list[range]] = {}
+        self.sides: dict[int, tuple[int, ...]] = {}  # corners: which of their two branches are met
+        self.chosen: dict[int, int] = {}  # the branch each of them is held to
         self.touching = False
         self.axes: dict[int, Evaluator | None] = {}
         for k in terms.below(root):
@@ -62,12 +66,13 @@ class Evaluator:
                 self.fixed[k] = self.term(k, self.fixed, [], False)
 
     def run(self, box: Box, gradient: bool, part: bool = False, touching: bool = False) -> Jet:
-        """The root's jet over a box; `several` tells whether a reading met more than one cell.
+        """The root's jet over a box; `several` tells whether a reading met more than one cell, `sides` which branches
+        every corner met.
 
         `part` is for a part of the box run before: a derivative is then taken on the same branch, though the part
         may be a face on a grid line. `touching` counts every closed cell that a box touches (proofs/attained.md).
         """
-        self.several, self.touching = False, touching
+        self.several, self.touching, self.sides = False, touching, {}
         if not (part and self.second()):
             self.branch = {}
         jets = dict(self.fixed)
@@ -120,6 +125,10 @@ class Evaluator:
             return self.over(first, jets[args[1]])
         if op == "power" and isinstance(payload, Fraction):
             return self.chain(first, "power", int(payload))
+        if op == "abs":
+            return self.corner(k, first, self.linear(a.neg(first.v), first, None), 1, floor=True)
+        if op == "max" or op == "min":
+            return self.corner(k, first, jets[args[1]], 1 if op == "max" else -1)
         if op == "reading":
             return self.reading(k, str(payload), args, [jets[x] for x in args], box)
         if op in SMOOTH:
@@ -196,6 +205,28 @@ class Evaluator:
             if self.second() and twice is not None:
                 jet.dg[i] = twice
         return jet
+
+    def corner(self, k: int, x: Jet, y: Jet, side: int, floor: bool = False) -> Jet:
+        """The larger (side 1) or smaller of two terms; slopes are hulls of the branches met (proofs/corners.md)."""
+        (p, q), (r, s) = x.v, y.v
+        met = (q >= r, s >= p) if side > 0 else (p <= s, r <= q)  # a tie counts for both
+        if k in self.chosen:
+            return (x, y)[self.chosen[k]]
+        self.sides[k] = tuple(i for i in (0, 1) if met[i])
+        if len(self.sides[k]) == 1:
+            return (x, y)[self.sides[k][0]]
+        pick = max if side > 0 else min
+        low, high = pick(p, r), pick(q, s)
+        jet = Jet((max(low, self.zero[0]) if floor else low, high), self.hull(x.d, y.d))
+        for i in x.g | y.g:
+            jet.g[i] = self.hull(x.g.get(i), y.g.get(i))
+        return jet
+
+    def hull(self, p: Interval, q: Interval) -> Interval:
+        if p is None and q is None:
+            return None
+        (a, b), (c, d) = p or self.zero, q or self.zero
+        return min(a, c), max(b, d)
 
     def derivatives(self, op: str, n: int, u: Interval, one: bool, two: bool) -> tuple[Interval, Interval, Interval]:
         """Value, first and second derivative of an elementary function over an interval, as far as asked for."""
@@ -333,8 +364,29 @@ def enclose(evaluator: Evaluator, box: Box, form: str) -> Interval:
         raise Undefined(f"unknown form {form!r}")
     if form == "d":
         return low, high
-    if evaluator.by and evaluator.several:
+    if not evaluator.by:
+        return smooth(evaluator, box, form, jet)
+    sides = dict(evaluator.sides)
+    several = prod(map(len, sides.values())) > 1
+    if evaluator.several or prod(map(len, sides.values())) > MOST_BRANCHES:
         return low, high  # a derivative that may jump has no other form
+    parts = []  # branch by branch, each smooth over the whole box: proofs/corners.md (3)
+    try:
+        for choice in product(*sides.values()):
+            evaluator.chosen = dict(zip(sides, choice, strict=True))
+            parts.append(smooth(evaluator, box, form, evaluator.run(box, True) if several else jet))
+    except Undefined:  # a branch is not defined where it is not taken
+        if several:
+            return low, high
+        raise
+    finally:
+        evaluator.chosen = {}
+    return max(low, min(p[0] for p in parts)), min(high, max(p[1] for p in parts))
+
+
+def smooth(evaluator: Evaluator, box: Box, form: str, jet: Jet) -> Interval:
+    """The forms that use slopes, for a jet over the box."""
+    low, high = evaluator.wanted(jet)
     slopes = evaluator.slopes(jet)
     if form == "c":
         c_low, c_high = centred(evaluator, box, slopes)
@@ -355,7 +407,7 @@ def second_order(evaluator: Evaluator, box: Box) -> Interval:
         if r:
             evaluator.direction = i
             row = evaluator.run(box, True).dg
-            if evaluator.several:
+            if evaluator.several or any(len(x) > 1 for x in evaluator.sides.values()):
                 evaluator.direction = None
                 return None
             for j in row:

@@ -8,7 +8,7 @@ from itertools import pairwise
 from .grammar import Expression, Node, Refused, exact, powered
 from .model import Stance, Statement
 
-FOLDED = frozenset(["add", "sub", "mul", "div", "neg", "sqrt"])
+FOLDED = frozenset(["add", "sub", "mul", "div", "neg", "sqrt", "abs", "min", "max"])
 Term = tuple[str, tuple[int, ...], Fraction | str | None]
 
 
@@ -122,6 +122,12 @@ class Names:
                         put("add", (a, put("mul", (args[0], put("sub", (b, a)))))) for a, b in pairwise(points)
                     )
                 ranks.append(points[0])
+            elif node.op == "clip":
+                ranks.append(put("min", (put("max", args[:2]), args[2])))
+            elif node.op in ("min", "max"):
+                for a in args[1:]:
+                    args = (put(node.op, (args[0], a)),)
+                ranks.append(args[0])
             else:
                 ranks.append(put(node.op, args, node.value))
         return ranks[-1]

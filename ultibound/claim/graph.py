@@ -5,6 +5,7 @@ from __future__ import annotations
 from collections.abc import Mapping
 from dataclasses import dataclass
 from fractions import Fraction
+from functools import reduce
 from itertools import pairwise
 
 from .constants import rational
@@ -12,8 +13,7 @@ from .errors import Bad
 from .expression import Expression, Node
 from .model import Claim, Stance
 
-CORNERS = frozenset({"abs", "min", "max", "clip"})
-FOLDED = frozenset({"add", "sub", "mul", "div", "neg", "sqrt"})
+FOLDED = frozenset({"add", "sub", "mul", "div", "neg", "sqrt", "abs", "min", "max"})
 
 
 @dataclass(frozen=True, slots=True)
@@ -153,6 +153,10 @@ class Scope:
                 done.append(g.power(args[0], node.value or Fraction(0)))
             elif node.op == "bezier":
                 done.append(self._bezier(args[0], args[1:]))
+            elif node.op == "clip":
+                done.append(g.add("min", g.add("max", args[0], args[1]), args[2]))
+            elif node.op in ("min", "max"):
+                done.append(reduce(lambda a, b, op=node.op: g.add(op, a, b), args))  # type: ignore[misc]  # op is bound
             else:
                 done.append(g.add(node.op, *args))
         return done[-1]

@@ -13,7 +13,7 @@ from math import prod
 
 from .constants import constant
 from .errors import Bad
-from .graph import CORNERS, Graph, Scope
+from .graph import Graph, Scope
 from .model import Claim, Quantity, Range, Requirement
 
 PROVABLE = ("settles", "gain", "residual", "bound", "radius", "sensitivity", "value")
@@ -242,8 +242,6 @@ def not_yet(claim: Claim) -> str | None:
             return f"require[{number}]: {unfollowed[0]} cannot be followed: {why}; use --set for each value"
         if r.over and r.kind not in ("sensitivity", "value"):
             return f"require[{number}]: over cannot be used with {r.kind} yet; use it with sensitivity or value"
-    for place, name in _corners(claim):
-        return f"{place}: {name} cannot be proved yet; state a smooth map"
     return None
 
 
@@ -269,21 +267,3 @@ def _folded(claim: Claim, r: Requirement) -> tuple[set[str], set[str]]:
         return found
 
     return below(exponents), below(ends)
-
-
-def _corners(claim: Claim) -> list[tuple[str, str]]:
-    graph = Graph()
-    stance = claim.stances[0]
-    scope = Scope(graph, claim, stance)
-    places = [(f"next.{s}", scope.name(f"next({s})")) for s in stance.next]
-    places += [(f"target.{s}", scope.name(f"target({s})")) for s in stance.target]
-    for number, r in enumerate(claim.requirements, 1):
-        if r.expression is not None:
-            places.append((f"require[{number}]", scope.node(r.expression)))
-        if r.by is not None:
-            places.append((f"require[{number}]", scope.name(r.by)))
-    for place, root in places:
-        for k in graph.reached((root,)):
-            if graph.gates[k].op in CORNERS:
-                return [(place, graph.gates[k].op)]
-    return []

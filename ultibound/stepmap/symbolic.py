@@ -31,6 +31,14 @@ class Reading(sympy.Function):  # type: ignore[misc]  # sympy ships no types
         return Reading(self.args[0], self.args[1], *axes, *raised)
 
 
+class Corner(sympy.Function):  # type: ignore[misc]  # sympy ships no types
+    """Corner(kind, a, b): the larger ("max", "abs" of a and -a) or smaller ("min") of two terms."""
+
+
+class Pick(sympy.Function):  # type: ignore[misc]  # sympy ships no types
+    """Pick(kind, a, b, p, q): p where a is the one a corner takes, q where b is: its derivatives."""
+
+
 def reading_parts(reading: Expr) -> tuple[list[Expr], list[int]]:
     rest = reading.args[2:]
     half = len(rest) // 2
@@ -84,7 +92,7 @@ def differentiated(rule: list[tuple[Expr, Expr]], of: Expr, by: Expr, tag: str) 
         out.append((symbol, meaning))
         if symbol == by:  # a marked name: its own expression is cut (proofs/forms.md)
             continue
-        total = chained(meaning, slope)
+        total = derived(meaning, slope)
         if total != 0:
             if total.is_Number or total.is_Symbol:
                 slope[symbol] = total
@@ -92,6 +100,14 @@ def differentiated(rule: list[tuple[Expr, Expr]], of: Expr, by: Expr, tag: str) 
                 slope[symbol] = sympy.Symbol(f"{symbol}_{tag}")
                 out.append((slope[symbol], total))
     return out, chained(of, slope)
+
+
+def derived(meaning: Expr, slope: dict[Expr, Expr]) -> Expr:
+    """The total derivative of one assignment; of a corner, that of whichever branch it takes."""
+    if not isinstance(meaning, Corner | Pick):
+        return chained(meaning, slope)
+    first, second = (chained(x, slope) for x in meaning.args[-2:])
+    return first if first == second else Pick(*meaning.args[:3], first, second)
 
 
 def chained(meaning: Expr, slope: dict[Expr, Expr]) -> Expr:
@@ -142,6 +158,9 @@ def _native(graph: Graph, root: int, program: Program) -> dict[int, int]:
             registers[k] = args[0]
         elif gate.op == "neg":
             registers[k] = program.add(Step("mul", (program.add(Step("number", value=Fraction(-1))), args[0])))
+        elif gate.op == "abs":
+            minus = program.add(Step("mul", (program.add(Step("number", value=Fraction(-1))), args[0])))
+            registers[k] = program.add(Step("abs", (args[0], minus)))
         elif gate.op == "reading":
             registers[k] = program.add(Step("reading", args, gate.value, gate.name, (0,) * len(args)))
         else:
@@ -177,6 +196,10 @@ def _register(program: Program, e: Expr, known: dict[Expr, int]) -> int:
         axes, orders = reading_parts(e)
         args = tuple(_register(program, a, known) for a in axes)
         step = Step("reading", args, Fraction(int(e.args[0])), str(e.args[1]).removeprefix("column "), tuple(orders))
+    elif isinstance(e, Corner):
+        step = Step(e.args[0].name, tuple(_register(program, a, known) for a in e.args[1:]))
+    elif isinstance(e, Pick):
+        step = Step("pick", tuple(_register(program, a, known) for a in e.args[1:]), name=e.args[0].name)
     else:
         step = Step(type(e).__name__.lower(), tuple(_register(program, a, known) for a in e.args))
     known[e] = program.add(step)
@@ -222,6 +245,8 @@ def _expression(gate: Gate, args: list[Expr]) -> Expr:
     if gate.op == "reading":
         column = sympy.Symbol(f"column {gate.name}")
         return Reading(sympy.Integer(int(gate.value or 0)), column, *args, *(sympy.Integer(0) for _ in args))
+    if gate.op in ("abs", "max", "min"):
+        return Corner(sympy.Symbol(gate.op), args[0], -args[0] if gate.op == "abs" else args[1])
     if gate.op in UNARY:
         return getattr(sympy, gate.op)(args[0])
-    raise ValueError(f"{gate.op} has no smooth symbolic form")
+    raise ValueError(f"{gate.op} has no symbolic form")
