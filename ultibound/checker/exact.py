@@ -16,10 +16,10 @@ class Exact:
     bits = 0
 
     def number(self, q: Fraction) -> Pair:
-        return q, q
+        return self._held(q, q)
 
     def between(self, low: Fraction, high: Fraction) -> Pair:
-        return low, high
+        return self._held(low, high)
 
     def ends(self, a: Pair) -> Pair:
         return a
@@ -28,10 +28,10 @@ class Exact:
         return -a[1], -a[0]
 
     def add(self, a: Pair, b: Pair) -> Pair:
-        return a[0] + b[0], a[1] + b[1]
+        return self._held(a[0] + b[0], a[1] + b[1])
 
     def sub(self, a: Pair, b: Pair) -> Pair:
-        return a[0] - b[1], a[1] - b[0]
+        return self._held(a[0] - b[1], a[1] - b[0])
 
     def mul(self, a: Pair, b: Pair) -> Pair:
         products = (a[0] * b[0], a[0] * b[1], a[1] * b[0], a[1] * b[1])

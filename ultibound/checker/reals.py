@@ -1,18 +1,22 @@
 """Outward-rounded arithmetic on whole numbers scaled by a power of two (proofs/rounding.md).
 
 An interval of `Scaled(bits)` is a pair (lo, hi) of whole numbers and means [lo, hi] / 2**bits. Every operation returns
-an interval that contains the exact result for all arguments in its operands.
+an interval that contains the exact result for all arguments in its operands, or raises Undefined.
 """
 
 from __future__ import annotations
 
 from collections.abc import Callable
 from fractions import Fraction
+from functools import lru_cache
 from math import isqrt
 
 Interval = tuple[int, int]
-LARGEST = 20000  # bits before the point: beyond, an operation is refused
-GUARD = 12
+LARGEST = 20000  # bits before the point: a result beyond is refused
+GUARD = 16  # bits more than asked for, in which series are summed
+NEAR = 64  # bits before the point up to which an angle is reduced by a short pi
+LONGEST = 2**19  # binary digits of a power before it is rounded
+BEYOND = f"a value beyond 2**{LARGEST}"
 
 
 class Undefined(Exception):
@@ -28,11 +32,9 @@ class Scaled:
 
     def __init__(self, bits: int) -> None:
         self.bits = bits
-        self._one = 1 << bits
-        self._limit = 1 << (bits + LARGEST)
-        self._product_limit = self._limit << bits
-        self._pi: dict[int, int] = {}
-        self._ln2: dict[int, int] = {}
+        self.one = 1 << bits, 1 << bits
+        self._most = 1 << (bits + LARGEST)
+        self._least = -self._most
 
     def number(self, q: Fraction) -> Interval:
         return self.between(q, q)
@@ -40,88 +42,70 @@ class Scaled:
     def between(self, low: Fraction, high: Fraction) -> Interval:
         a = (low.numerator << self.bits) // low.denominator
         b = -((-high.numerator << self.bits) // high.denominator)
-        return self._held((a, b))
+        return self._held(a, b)
 
     def ends(self, a: Interval) -> tuple[Fraction, Fraction]:
-        return Fraction(a[0], self._one), Fraction(a[1], self._one)
-
-    def _held(self, a: Interval) -> Interval:
-        if a[0] < -self._limit or a[1] > self._limit:
-            raise Undefined(f"a value beyond 2**{LARGEST}")
-        return a
+        return Fraction(a[0], self.one[0]), Fraction(a[1], self.one[0])
 
     def neg(self, a: Interval) -> Interval:
         return -a[1], -a[0]
 
     def add(self, a: Interval, b: Interval) -> Interval:
-        return a[0] + b[0], a[1] + b[1]
+        low, high = a[0] + b[0], a[1] + b[1]
+        if low < self._least or high > self._most:
+            raise Undefined(BEYOND)
+        return low, high
 
     def sub(self, a: Interval, b: Interval) -> Interval:
-        return a[0] - b[1], a[1] - b[0]
+        low, high = a[0] - b[1], a[1] - b[0]
+        if low < self._least or high > self._most:
+            raise Undefined(BEYOND)
+        return low, high
 
     def mul(self, a: Interval, b: Interval) -> Interval:
         (p, q), (r, s), n = a, b, self.bits
-        if p >= 0 and r >= 0:
-            low, high = p * r, q * s
+        if p >= 0:
+            low, high = (p if r >= 0 else q) * r, (q if s >= 0 else p) * s
+        elif q <= 0:
+            low, high = (q if s <= 0 else p) * s, (p if r <= 0 else q) * r
         else:
-            products = (p * r, p * s, q * r, q * s)
-            low, high = min(products), max(products)
-        if high > self._product_limit or low < -self._product_limit:
-            raise Undefined(f"a value beyond 2**{LARGEST}")
-        return low >> n, -(-high >> n)
+            low, high = min(p * s, q * r), max(p * r, q * s)
+        return self._held(low >> n, -(-high >> n))
 
     def div(self, a: Interval, b: Interval) -> Interval:
-        (p, q), (r, s) = a, b
-        if r <= 0 <= s:
+        (p, q), (r, s), n = a, b, self.bits
+        if s < 0:
+            p, q, r, s = -q, -p, -s, -r
+        if r <= 0:
             raise Undefined("division by an interval that contains zero")
-        p, q = p << self.bits, q << self.bits
-        low = min(p // r, p // s, q // r, q // s)
-        high = max(-(-p // r), -(-p // s), -(-q // r), -(-q // s))
-        return self._held((low, high))
+        return self._held((p << n) // (s if p >= 0 else r), -((-q << n) // (r if q >= 0 else s)))
 
     def power(self, a: Interval, n: int) -> Interval:
         """a**n for n >= 0."""
         if n == 0:
-            return self._one, self._one
-        low, high = a
-        if n % 2 == 0:
-            low, high = (0 if low <= 0 <= high else min(abs(low), abs(high))), max(abs(low), abs(high))
-        size = max(abs(low), abs(high)).bit_length() - self.bits
-        if size > 0 and (size - 1) * n > LARGEST:
-            raise Undefined(f"a value beyond 2**{LARGEST}")
-        shift = self.bits * (n - 1)
-        return low**n >> shift, -(-(high**n) >> shift)
+            return self.one
+        low, high = a if n % 2 else magnitude(a)
+        if max(-low, high).bit_length() * n > LONGEST:
+            raise Undefined(f"a power of more than {LONGEST} binary digits")
+        return self._outward(low**n, high**n, self.bits * (n - 1))
 
     def sqrt(self, a: Interval) -> Interval:
         if a[0] < 0:
             raise Undefined("root of an interval with negative values")
-        high = isqrt(a[1] << self.bits)
-        return isqrt(a[0] << self.bits), high + (high * high < a[1] << self.bits)
+        low, square = isqrt(a[0] << self.bits), a[1] << self.bits
+        high = low if a[0] == a[1] else isqrt(square)
+        return self._held(low, high + (high * high < square))
 
     def pi(self) -> Interval:
-        p = self.bits + GUARD
-        return self._rounded(self._pi_at(p), 4, p)
+        return half_pi(self.bits + 1)
 
     def exp(self, a: Interval) -> Interval:
-        return self._rising(self._exp_point, a)
+        return self._rising(self._exp, a)
 
     def log(self, a: Interval) -> Interval:
         if a[0] <= 0:
             raise Undefined("logarithm of an interval with values that are not positive")
-        return self._rising(self._log_point, a)
-
-    def sinh(self, a: Interval) -> Interval:
-        return self._rising(self._sinh_point, a)
-
-    def cosh(self, a: Interval) -> Interval:
-        low, high = a
-        if low <= 0 <= high:
-            return self._one, self._cosh_point(max(-low, high))[1]
-        low, high = min(abs(low), abs(high)), max(abs(low), abs(high))
-        return self._rising(self._cosh_point, (low, high))
-
-    def tanh(self, a: Interval) -> Interval:
-        return self._rising(self._tanh_point, a)
+        return self._rising(self._log, a)
 
     def sin(self, a: Interval) -> Interval:
         return self._wave(a, 0)
@@ -130,268 +114,228 @@ class Scaled:
         return self._wave(a, 1)
 
     def tan(self, a: Interval) -> Interval:
-        turns = {k for x in set(a) for k in self._quarter(x, 2, 1)}
-        if len(turns) != 1:
+        p = 3 * (self.bits + GUARD)  # near a pole an error grows by the square of the value
+        fine = scaled(p)
+        ends, first, last = self._turned(a, p)
+        if (first + 1) // 2 != (last + 1) // 2:
             raise Undefined("tangent of an interval that may contain a pole")
-        return self._rising(self._tan_point, a)
+        found = []
+        for n, r in ends:
+            sine = sine_of(0, r, p)
+            cosine = fine.sqrt(fine.sub(fine.one, fine.power(sine, 2)))
+            found.append(fine.neg(fine.div(cosine, sine)) if n % 2 else fine.div(sine, cosine))
+        return self._outward(found[0][0], found[-1][1], p - self.bits)
 
     def asin(self, a: Interval) -> Interval:
-        if a[0] < -self._one or a[1] > self._one:
+        if a[0] < -self.one[0] or a[1] > self.one[0]:
             raise Undefined("inverse sine or cosine of an interval beyond 1")
-        return self._rising(self._asin_point, a)
+        return self._rising_odd(self._asin, a)
 
     def acos(self, a: Interval) -> Interval:
-        low, high = self.asin(a)
-        p = self.bits + GUARD
-        half = self._rounded(self._pi_at(p) >> 1, 4, p)
-        return max(0, half[0] - high), half[1] - low
+        fine = scaled(self.bits + 4)
+        low, high = fine.sub(half_pi(fine.bits), fine.asin((a[0] << 4, a[1] << 4)))
+        return self._outward(max(0, low), high, 4)
 
     def atan(self, a: Interval) -> Interval:
-        return self._rising(self._atan_point, a)
+        return self._rising_odd(self._atan, a)
 
-    # Below: functions at a point x / 2**bits. Each works at p bits, where its error is at most a known number of
-    # units, and rounds that outward to `bits`.
+    def sinh(self, a: Interval) -> Interval:
+        return self._rising_odd(self._sinh, a)
 
-    def _rising(self, point: Callable[[int], Interval], a: Interval) -> Interval:
-        low, high = point(a[0])
-        return (low, high) if a[0] == a[1] else (low, point(a[1])[1])
+    def cosh(self, a: Interval) -> Interval:
+        return self._rising(self._cosh, magnitude(a))
 
-    def _rounded(self, y: int, error: int, p: int) -> Interval:
-        shift = p - self.bits
-        return (y - error) >> shift, -(-(y + error) >> shift)
+    def tanh(self, a: Interval) -> Interval:
+        return self._rising_odd(self._tanh, a)
 
-    def _pi_at(self, p: int) -> int:
-        """pi * 2**p with error below 2: Machin's formula with guard bits."""
-        if p not in self._pi:
-            q = p + 16
+    # Below: what these share, and functions at a point x / 2**bits, the odd ones for x >= 0.
 
-            def arctan_of_inverse(n: int) -> int:
-                term = total = (1 << q) // n
-                k = 1
-                while term:
-                    term //= -n * n
-                    k += 2
-                    total += term // k
-                return total
+    def _held(self, low: int, high: int) -> Interval:
+        if low < self._least or high > self._most:
+            raise Undefined(BEYOND)
+        return low, high
 
-            self._pi[p] = (16 * arctan_of_inverse(5) - 4 * arctan_of_inverse(239)) >> 16
-        return self._pi[p]
+    def _outward(self, low: int, high: int, extra: int) -> Interval:
+        """An interval with `extra` more bits after the point, rounded outward."""
+        return self._held(low >> extra, -(-high >> extra))
 
-    def _ln2_at(self, p: int) -> int:
-        """log 2 * 2**p with error below 2: 2 artanh(1/3)."""
-        if p not in self._ln2:
-            q = p + 16
-            term = total = (1 << q) // 3
-            k = 1
-            while term:
-                term //= 9
-                k += 2
-                total += term // k
-            self._ln2[p] = total >> 15
-        return self._ln2[p]
+    def _rising(self, f: Callable[[int], Interval], a: Interval) -> Interval:
+        low, high = f(a[0])
+        return low, high if a[0] == a[1] else f(a[1])[1]
 
-    def _exp_at(self, x: int, p: int) -> tuple[int, int]:
-        """(y, n) with exp(x / 2**p) = y * 2**n / 2**p, |error of y| <= 2**10 + 2 |n| units of y.
+    def _rising_odd(self, f: Callable[[int], Interval], a: Interval) -> Interval:
+        ends = [f(x) if x >= 0 else self.neg(f(-x)) for x in (a if a[0] < a[1] else a[:1])]
+        return ends[0][0], ends[-1][1]
 
-        x = n log 2 + r; the series of r / 2**6, then six squarings (each doubles the relative error).
-        """
-        ln2 = self._ln2_at(p)
-        n = (2 * x + ln2) // (2 * ln2)
-        r = (x - n * ln2) >> 6
-        term = total = 1 << p
-        k = 1
-        while True:
-            term = (term * r >> p) // k
-            if term in (0, -1):
-                break
-            total += term
-            k += 1
-        for _ in range(6):
-            total = total * total >> p
-        return total, n
-
-    def _exp_point(self, x: int) -> Interval:
-        b = self.bits
-        if x >> b > LARGEST:
-            raise Undefined("exponential of a value that large")
-        if x >> b < -b - 2:
+    def _exp(self, x: int) -> Interval:
+        """The series of x / 2**k, then k squarings; exp x <= 2**size."""
+        whole = x >> self.bits
+        if 10 * whole > 7 * LARGEST:
+            raise Undefined(BEYOND)
+        if whole < -self.bits:
             return 0, 1
-        p = b + 40 + max(0, (x >> b) * 3 // 2 + 2)
-        y, n = self._exp_at(x << (p - b), p)
-        error = self._exp_error(p, n)
-        shift = p - b - n
-        return max(0, (y - error) >> shift), -(-(y + error) >> shift)
-
-    def _exp_error(self, p: int, n: int) -> int:
-        """Units of y: 64 (k + 2) for terms truncated and squared, and 64 * 3 (|n| + 1) for n log 2."""
-        return 200 * (p // 4 + 20) + 400 * (abs(n) + 1)
-
-    def _two_exps(self, x: int) -> tuple[int, int, int, int]:
-        """exp(x), exp(-x) at p bits, error of both, p; x >= 0."""
-        b = self.bits
-        if x >> b > LARGEST:
-            raise Undefined("hyperbolic function of a value that large")
-        p = b + 50 + (x >> b) * 3 // 2 + 2
-        y, n = self._exp_at(x << (p - b), p)
-        up = y << n if n >= 0 else y >> -n
-        error = (self._exp_error(p, n) << max(n, 0)) + 1
-        down = (1 << 2 * p) // up
-        return up, down, error, p
-
-    def _sinh_point(self, x: int) -> Interval:
+        size = whole * 3 // 2 + 2 if whole >= 0 else 0
+        k = max(0, x.bit_length() - self.bits + isqrt(self.bits + size) // 2 + 4)
+        p = self.bits + GUARD + size + k
+        y, error = exp_of(abs(x), self.bits + k, p)
         if x < 0:
-            low, high = self._sinh_point(-x)
-            return -high, -low
-        up, down, error, p = self._two_exps(x)
-        low, high = self._rounded((up - down) >> 1, 2 * error + 2, p)
-        return max(x, low), high  # sinh x >= x
+            y, error = (1 << 2 * p) // (y + error), error + 1
+        for _ in range(k):
+            y = y * y >> p
+        return self._outward(y, y + (error + 1 << k + size), p - self.bits)
 
-    def _cosh_point(self, x: int) -> Interval:
-        up, down, error, p = self._two_exps(abs(x))
-        low, high = self._rounded((up + down) >> 1, 2 * error + 2, p)
-        return max(self._one, low), high
+    def _sinh(self, x: int) -> Interval:
+        fine = scaled(self.bits + 4)
+        up = fine._exp(x << 4)
+        return self._outward(*fine.sub(up, fine.div(fine.one, up)), 5)
 
-    def _tanh_point(self, x: int) -> Interval:
-        if x < 0:
-            low, high = self._tanh_point(-x)
-            return -high, -low
-        b = self.bits
-        p = b + 50
-        if x >> b > b:  # 1 - tanh x < 2 exp(-2x) < 2**-bits
-            return self._one - 1, self._one
-        y, n = self._exp_at(-2 * x << (p - b), p)
-        t = y >> -n if n < 0 else y << n
-        error = self._exp_error(p, n) + 1
-        low, high = self._rounded(((1 << p) - t << p) // ((1 << p) + t), 4 * error + 2, p)
-        return max(0, low), min(self._one, x, high)
+    def _cosh(self, x: int) -> Interval:
+        fine = scaled(self.bits + 4)
+        up = fine._exp(x << 4)
+        low, high = fine.add(up, fine.div(fine.one, up))
+        return self._outward(max(2 * fine.one[0], low), high, 5)
 
-    def _log_point(self, x: int) -> Interval:
-        """x = m 2**n with m in [0.70, 1.42]: n log 2 + 2 artanh((m - 1)/(m + 1))."""
-        p = self.bits + 40
-        n = x.bit_length() - self.bits
-        shift = p - self.bits - n
-        m = x << shift if shift >= 0 else x >> -shift
-        if 10 * m < 7 << p:
-            m, n = m << 1, n - 1
-        z = ((m - (1 << p)) << p) // (m + (1 << p))
-        square = z * z >> p
-        power = total = z
-        k = 1
-        while power not in (0, -1):
-            power = power * square >> p
-            k += 2
-            total += power // k
-        return self._rounded(2 * total + n * self._ln2_at(p), 4 * k + 2 * abs(n) + 64, p)
+    def _tanh(self, x: int) -> Interval:
+        fine = scaled(self.bits + 4)
+        down = fine._exp(-2 * x << 4)
+        low, high = fine.div(fine.sub(fine.one, down), fine.add(fine.one, down))
+        return self._outward(max(0, low), high, 4)
 
-    def _quarter(self, x: int, half_turns: int, offset: int) -> set[int]:
-        """Possible values of floor(x / (pi half_turns / 2) + offset / 2), one or two of them."""
-        p = self.bits + GUARD + max(0, x.bit_length() - self.bits)
-        unit = self._pi_at(p) * half_turns
-        scaled = 2 * (x << (p - self.bits))
-        found = set()
-        for u in (unit - 4 * half_turns, unit + 4 * half_turns):
-            found.add((2 * scaled + offset * u) // (2 * u))
-        return found
+    def _log(self, x: int) -> Interval:
+        """x / 2**bits = m 2**n with m in [2/3, 4/3): n log 2 + 2 artanh((m - 1)/(m + 1))."""
+        fine = scaled(self.bits + 2 * GUARD)
+        power = 1 << (3 * x >> 2).bit_length()  # x / m
+        n = power.bit_length() - 1 - self.bits << fine.bits
+        z = (abs(x - power) << fine.bits) // (x + power)
+        part = arc((z, z + 1), 1, fine.bits)
+        part = fine.add(part, part) if x >= power else fine.neg(fine.add(part, part))
+        return self._outward(*fine.add(part, fine.mul((n, n), log2(fine.bits))), 2 * GUARD)
 
-    def _sine_cosine(self, x: int, p: int) -> tuple[int, int, int]:
-        """sin and cos of x / 2**p, each with an error of at most e units, and e."""
-        extra = max(0, x.bit_length() - p) + 4
-        half = self._pi_at(p + extra)
-        n = (2 * (x << extra + 1) + half) // (2 * half)
-        r = ((x << extra + 1) - n * half) >> (extra + 1)
-        square = r * r >> p
-        sine, cosine = r, 1 << p
-        up, k = r, 1
-        while up not in (0, -1):
-            up = -(up * square >> p) // ((k + 1) * (k + 2))
-            sine += up
-            k += 2
-        up, j = 1 << p, 0
-        while up not in (0, -1):
-            up = -(up * square >> p) // ((j + 1) * (j + 2))
-            cosine += up
-            j += 2
-        pair = ((sine, cosine), (cosine, -sine), (-sine, -cosine), (-cosine, sine))[n % 4]
-        return pair[0], pair[1], 4 * (k + j) + 32
+    def _asin(self, x: int) -> Interval:
+        """2 arctan(x / (1 + sqrt(1 - x) sqrt(1 + x)))."""
+        fine = scaled(self.bits + 6)
+        one, wide = fine.one, (x << 6, x << 6)
+        root = fine.mul(fine.sqrt(fine.sub(one, wide)), fine.sqrt(fine.add(one, wide)))
+        t = fine.div(wide, fine.add(one, root))
+        return self._outward(*fine._atan(t[0], t[1] - t[0]), 5)
 
-    def _wave(self, a: Interval, which: int) -> Interval:
-        """sin (which 0) or cos (1), whose extremes lie at odd multiples, or multiples, of half turns."""
-        one = self._one
-        if a[1] - a[0] >= 7 << self.bits:
-            return -one, one
-        ends = [self._wave_point(x, which) for x in a]
-        low, high = min(e[0] for e in ends), max(e[1] for e in ends)
-        # quadrants of the angle, shifted so that cos has its top at 0 mod 4 and its bottom at 2 mod 4
-        first = min(self._quarter(a[0], 1, 0))
-        last = max(self._quarter(a[1], 1, 0))
-        for corner in range(first + 1, last + 1):
-            position = (corner - (1 - which)) % 4
-            if position == 0:
-                high = one
-            if position == 2:
-                low = -one
-        return max(low, -one), min(high, one)
+    def _atan(self, x: int, width: int = 0) -> Interval:
+        """pi/2 - arctan 1/x above 1; two halvings of the angle by x / (1 + sqrt(1 + x²)), then the series."""
+        fine = scaled(self.bits + GUARD)
+        one, t = fine.one, (x << GUARD, x + width << GUARD)
+        t = fine.div(one, t) if x > self.one[0] else t
+        for _ in range(2):
+            t = fine.div(t, fine.add(one, fine.sqrt(fine.add(one, fine.mul(t, t)))))
+        low, high = arc(t, -1, fine.bits)
+        low, high = 4 * low, 4 * high
+        if x > self.one[0]:
+            low, high = fine.sub(half_pi(fine.bits), (low, high))
+        return self._outward(max(0, low), high, GUARD)
 
-    def _wave_point(self, x: int, which: int) -> Interval:
-        p = self.bits + 30
-        found = self._sine_cosine(x << 30, p)
-        low, high = self._rounded(found[which], found[2], p)
-        return max(low, -self._one), min(high, self._one)
+    def _turned(self, a: Interval, p: int) -> tuple[list[tuple[int, int]], int, int]:
+        """(n, r) for each end, which is n pi/2 + (r ± 2) / 2**p; the first and last quarter turn that may be met."""
+        self._held(*a)
+        spare = 2 + (LARGEST if max(-a[0], a[1]) >> self.bits + NEAR else NEAR)
+        quarter, _ = half_pi(p + spare)
+        ends = []
+        for x in a if a[0] < a[1] else a[:1]:
+            x <<= p + spare - self.bits
+            n = (2 * x + quarter) // (2 * quarter)
+            ends.append((n, x - n * quarter >> spare))
+        return ends, ends[0][0] - (ends[0][1] < 2), ends[-1][0] - (ends[-1][1] < -2)
 
-    def _tan_point(self, x: int) -> Interval:
-        p = self.bits + 40
-        _, cosine, _ = self._sine_cosine(x << 40, p)
-        lost = 2 * max(0, p - abs(cosine).bit_length())
-        if lost > 2 * p - 20:
-            raise Undefined("tangent too close to a pole")
-        q = p + lost
-        sine, cosine, error = self._sine_cosine(x << (q - self.bits), q)
-        tangent = (sine << q) // cosine
-        # |d(s/c)| <= (e + |t| e) / |c|, doubled for the error of c itself
-        spread = 2 * ((error << q) + abs(tangent) * error) // abs(cosine) + 4
-        return self._rounded(tangent, spread, q)
+    def _wave(self, a: Interval, quarters: int) -> Interval:
+        """sin(x + quarters pi/2): 1 is reached where a quarter turn 1 mod 4 begins, -1 where one 3 mod 4 does."""
+        p, one = self.bits + GUARD, self.one[0]
+        ends, first, last = self._turned(a, p)
+        values = [sine_of(n + quarters, r, p) for n, r in ends]
+        low, high = self._outward(min(values)[0], max(v[1] for v in values), GUARD)
+        first, last = first + quarters, last + quarters
+        low = -one if (first - 3) // 4 < (last - 3) // 4 else max(-one, low)
+        high = one if (first - 1) // 4 < (last - 1) // 4 else min(one, high)
+        return low, high
 
-    def _atan_at(self, x: int, p: int) -> tuple[int, int]:
-        """arctan of x / 2**p for |x| <= 2**p, with an error of at most e units, and e.
 
-        Three halvings of the angle by x / (1 + sqrt(1 + x²)), then the series.
-        """
-        one = 1 << p
-        for _ in range(3):
-            x = (x << p) // (one + isqrt((one << p) + x * x))
-        square = x * x >> p
-        power = total = x
-        k = 1
-        while power not in (0, -1):
-            power = -(power * square >> p)
-            k += 2
-            total += power // k
-        return total << 3, 16 * k + 128
+scaled = lru_cache(256)(Scaled)
 
-    def _atan_point(self, x: int) -> Interval:
-        if x < 0:
-            low, high = self._atan_point(-x)
-            return -high, -low
-        p = self.bits + 30
-        if x <= self._one:
-            y, error = self._atan_at(x << 30, p)
-        else:
-            y, error = self._atan_at((1 << self.bits + p) // x, p)
-            y, error = (self._pi_at(p) >> 1) - y, error + 4
-        low, high = self._rounded(y, error, p)
-        return max(0, low), min(high, x)
 
-    def _asin_point(self, x: int) -> Interval:
-        """arcsin x = arctan(x / sqrt(1 - x²)); above 1/2, pi/2 - 2 arcsin sqrt((1 - x)/2)."""
-        if x < 0:
-            low, high = self._asin_point(-x)
-            return -high, -low
-        p = self.bits + 40
-        one, wide = 1 << p, x << 40
-        far = 2 * wide > one
-        s = isqrt((one - wide) << (p - 1)) if far else wide
-        y, error = self._atan_at((s << p) // isqrt((one << p) - s * s), p)
-        if far:
-            y, error = (self._pi_at(p) >> 1) - 2 * y, 2 * error + 64
-        low, high = self._rounded(y, error + 8, p)
-        return max(x, low), high  # arcsin x >= x
+def magnitude(a: Interval) -> Interval:
+    low, high = a
+    return a if low >= 0 else (max(0, -high), max(-low, high))
+
+
+# Series, enclosed at p bits after the point; what they lose is counted in proofs/rounding.md.
+
+
+def exp_of(x: int, scale: int, p: int) -> tuple[int, int]:
+    """(y, error) with y <= exp(x / 2**scale) 2**p <= y + error, for 0 <= x <= 2**scale / 16."""
+    term = total = 1 << p
+    k = 0
+    while term:
+        k += 1
+        term = (term * x >> scale) // k
+        total += term
+    return total, k + k // 8 + 1
+
+
+def sine_of(n: int, r: int, p: int) -> Interval:
+    """sin(n pi/2 + r / 2**p) with r off by at most 2 units and not beyond 4/5."""
+    if r < 0:
+        n, r = 2 - n, -r
+    square = r * r >> p
+    term = total = 1 << p if n % 2 else r
+    k = 1 if n % 2 else 2
+    while term:
+        term = (term * square >> p) // (k * (k + 1))
+        total -= term
+        term = (term * square >> p) // ((k + 2) * (k + 3))
+        total += term
+        k += 4
+    if n % 4 >= 2:
+        total = -total
+    error = k // 2 + 4
+    return total - error, total + error
+
+
+def arc(x: Interval, sign: int, p: int) -> Interval:
+    """arctan x (sign -1) or artanh x (sign 1), for 0 <= x <= 1/4."""
+    square = x[0] * x[0] >> p
+    power = total = x[0]
+    k, flip = 1, 1
+    while power:
+        power = power * square >> p
+        k, flip = k + 2, flip * sign
+        total += flip * (power // k)
+    error = 3 * k // 4 + 1
+    return total - error, total + error + 2 * (x[1] - x[0])
+
+
+def arc_of_inverse(n: int, sign: int, p: int) -> Interval:
+    """arctan 1/n (sign -1) or artanh 1/n (sign 1) from exact partial sums."""
+
+    def part(a: int, b: int) -> tuple[int, int]:
+        """(top, low) with top / low = sum of sign**k n**(2(b - 1 - k)) / (2k + 1) for a <= k < b."""
+        if b - a == 1:
+            return sign**a, 2 * a + 1
+        m = (a + b) // 2
+        (t, u), (v, w) = part(a, m), part(m, b)
+        return t * w * n ** (2 * (b - m)) + v * u, u * w
+
+    terms = p // ((n * n).bit_length() - 1) + 1
+    top, low = part(0, terms)
+    y = (top << p) // (low * n ** (2 * terms - 1))
+    return y - 1, y + 2
+
+
+@lru_cache(256)
+def half_pi(bits: int) -> Interval:
+    """Machin: 8 arctan 1/5 - 2 arctan 1/239."""
+    a, b = arc_of_inverse(5, -1, bits + GUARD), arc_of_inverse(239, -1, bits + GUARD)
+    return 8 * a[0] - 2 * b[1] >> GUARD, -(2 * b[0] - 8 * a[1] >> GUARD)
+
+
+@lru_cache(256)
+def log2(bits: int) -> Interval:
+    """2 artanh 1/3."""
+    low, high = arc_of_inverse(3, 1, bits + GUARD)
+    return 2 * low >> GUARD, -(-2 * high >> GUARD)
