@@ -488,3 +488,42 @@ add(
     swap("state = { vy = [-0.1, 0.6] }", "state = { vy = [-0.1, 0.6], vx = [0, 2] }", STANCES),
 )
 add(False, "a column of a lone surrogate", LIBRARY, {"gaits.csv": CSV + "\ud800\x01"})
+
+# magnitude of constants: exact ones up to 2**17 bits, the others and what they are worked out from up to 2**20000
+HUGE = "((2**50)**50)**8"  # 2**20000
+WHOLE = "((2**50)**50)**52*(2**63)**17"  # 2**131071, of 2**17 bits
+for text in (
+    "exp(13862.943611)", "cosh(-13862.943611)", "sinh(-13862.943611)", "exp(-1e6000)", "sin(1e6000)", "cos(-1e6000)", "tan(1e300)", "atan(1e6000)", "tanh(-1e6000)", "log(1e6000)", "sqrt(1e9998)",
+    "sqrt(1e6001)", "pi**64", "pi**-64", "(1e90*pi)**64", "1e-9999*pi", "1e-9999 + pi", "1e6000*pi", "1e6000/pi", "pi/1e6000", "asin(1e-9999)", "acos(-1e-9999)", "sqrt(3e-9999)", "min(1e9999, pi)*0", "max(1e9999, pi)",
+    "clip(1e9999, 0, pi)", "clip(pi, -1e9999, 1e9999)", "abs(1e-9999 - pi)", "bezier(1e-9999, 1, 2)", "bezier(2, 1e6000, pi)", "pi - 1e6000", "0*pi + 1e9999", "2**(1e9999/1e9999)", f"atan({HUGE})",
+    f"{HUGE} - pi", f"pi - {HUGE}", f"({HUGE} - 1)**0.5", f"({HUGE} - 1)**-0.5 + 1", f"sqrt(2)*sqrt(2)/4*{HUGE}", f"{HUGE}*cos(0)", f"{HUGE}*(1 + 0*pi)*{HUGE}", WHOLE, f"-({WHOLE})", f"1/({WHOLE})",
+    f"{WHOLE} - 1", f"({WHOLE})*(1/({WHOLE}))", f"sqrt(({HUGE})**2)", "(2**50)**50 + 1/(2**50)**50", f"log({HUGE})", f"tanh({HUGE})", f"sin(-{HUGE})",
+    "asin(tanh(400))", "acos(-tanh(1e6))", "max(tanh(50), 1)", "sqrt(sin(5e-91))", "tan(5e-91)**0.5", "acos(exp(-1e-120))", "min(0, sin(1e-300))", "sqrt(-log(1 - 1e-120))",
+):  # fmt: skip
+    add(True, f"magnitude {text}", BASE.replace("g = 9.81", f'g = 9.81\nc = "{text}"'))
+for text in (
+    "exp(13862.943612)", "exp(13870)", "exp(20000)", "exp(20001)", "exp(1e6000)", "cosh(13862.943612)", "cosh(-14000)", "sinh(-13862.943612)", "sinh(-20001)", "sin(1e9999)", "cos((2**64)**64*(2**64)**64*(2**64)**64*(2**64)**64*(2**64)**64)",
+    "tan(1e9999)", "atan(1e9999)", "atan(-1e9999)", "tanh(1e9999)", "log(1e9999)", "sqrt(1e9999)", "sqrt(1e9998 + 1)", "exp(-1e9999)", "cosh(1e9999)", "1e9999*pi", "1e9999 + pi", "pi - 1e9999", "pi/1e9999", "1e9999/pi",
+    "pi/1e-6100", "(1e300*pi)**64", "(1e300*pi)**-64", "(1e-3*pi)**-64", "((2**50)**50*pi)**8", "1e-9999*pi*1e9999", "bezier(1e-9999, 1, 1e9999)", "bezier(1e4000, 1e4000, 0)", "asin(1e9999)", "max(1e9999, pi)*pi", "(1e9999 + 1)**0.5",
+    f"atan({HUGE} + 1)", f"atan(-{HUGE} - 1)", f"{HUGE} + pi", f"-{HUGE} - pi", f"{HUGE} - (pi - 4)", f"{HUGE}*pi", f"({HUGE} + 1)**0.5", f"({HUGE} + 1)**-0.5", f"sqrt(2)*{HUGE}/2*sqrt(2)*2", f"bezier(2, -{HUGE}/2 - 1, {HUGE}/2)",
+    f"bezier(0.5, -{HUGE}, {HUGE}, 0)", f"{WHOLE}*2", f"-({WHOLE})*2", f"1/({WHOLE})/2", f"{WHOLE} + 1/2", f"{WHOLE} + ({WHOLE})", f"({WHOLE})**2", f"({WHOLE})**-2", "(2**50)**50*1e9999*1e9999*1e9999*1e9999",
+):  # fmt: skip
+    add(False, f"magnitude {text}", BASE.replace("g = 9.81", f'g = 9.81\nc = "{text}"'))
+
+# the work a claim's constants may take, met exactly and passed by one
+for limit in (512, 513):  # 1e9999 takes 32 kilobits, once read and once worked out
+    add(limit == 512, f"{limit} long numbers", swap("[0.36, 0.40]", "{ values = [" + "1e9999," * limit + "] }"))
+for limit in (1024, 1025):
+    text = "".join(f'd{k} = "1e9999*v"\n' for k in range(limit))
+    add(limit == 1024, f"{limit} long factors", swap("[define]\n", f"[define]\n{text}"))
+for limit in (41, 42):
+    text = "".join(f'c{k} = "exp(5000)"\n' for k in range(limit))
+    add(limit == 41, f"{limit} large values", swap("g = 9.81\n", f"g = 9.81\n{text}"))
+for limit in (60, 61):  # of 2**17 bits; the number itself is worked out twice, by factors
+    text = f'c = "{WHOLE}"\n' + "".join(f'c{k} = "c"\n' for k in range(limit))
+    add(limit == 60, f"{limit} names of a long number", swap("g = 9.81\n", f"g = 9.81\n{text}"))
+for text in ("1e9999", "-1e9999", "exp(1000)", "sin(1e300)", "kappa*pi"):
+    add(True, f"require value(v) <= {text}", require(f"value(v) <= {text}"))
+for text in ("1e9999*1e9999", "exp(3000)", "sin(1e1000)", "- - - -1e9999", f"{HUGE}*v"):
+    add(False, f"require value(v) <= {text}", require(f"value(v) <= {text}"))
+add(False, "require value of a long number", require(f"value({WHOLE} + v)"))

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+from dataclasses import replace
 from fractions import Fraction
 from pathlib import Path
 
@@ -10,25 +11,29 @@ import pytest
 from tests.corpus import CASES, Case
 from ultibound.checker.derive import Derivation
 from ultibound.checker.derive import Domain as CheckerDomain
-from ultibound.checker.rules import SHAPES, THEOREMS
+from ultibound.checker.rules import SHAPES
 from ultibound.checker.statement import read_statement
+from ultibound.checker.theorems import THEOREMS
 from ultibound.claim import parse_claim
-from ultibound.claim.obligations import Domain, Obligation, Obligations, not_yet
+from ultibound.claim.obligations import RANGED, Domain, Obligation, Obligations, not_yet
 
 PROOFS = Path(__file__).parents[1] / "proofs"
 PROVABLE = [c for c in CASES if c.accepted and not_yet(parse_claim(c.text, c.settings, c.data, "c")) is None]
 
 
 def spelled_out(graph: list[tuple[str, tuple[int, ...], object]], root: int) -> tuple[object, ...]:
-    """The terms a root is built from, numbered alike on both sides."""
+    """The terms a root is built from, numbered alike on both sides: arguments first, from left to right."""
     number: dict[int, int] = {}
-    out = []
-    below = {root}
-    for k in range(root, -1, -1):
-        if k in below:
-            below.update(graph[k][1])
-    for k in sorted(below):
+    out: list[object] = []
+    waiting = [root]
+    while waiting:
+        k = waiting[-1]
         op, args, payload = graph[k]
+        missing = [a for a in args if a not in number]
+        if k in number or missing:
+            waiting += missing[::-1] if k not in number else []
+            waiting = waiting if k not in number else waiting[:-1]
+            continue
         number[k] = len(out)
         out.append((op, tuple(number[a] for a in args), payload))
     return tuple(out)
@@ -50,12 +55,15 @@ def test_both_lists_mean_the_same(case: Case, ball: bool) -> None:
         o.slope(mine),
         *(o.target_slope(h) for h in o.moving()),
     ]
-    listed += [
-        o.requirement(n, mine) for n, r in enumerate(claim.requirements, 1) if r.kind in ("value", "sensitivity")
-    ]
+    listed += [o.requirement(n, mine) for n, r in enumerate(claim.requirements, 1) if r.kind in RANGED]
+    radii = (Fraction(1, 16), Fraction(1, 8))
+    listed += [*(o.shell(n, mine, radii) for n in (1, 2)), o.line(mine, Fraction(1, 3))]
+    cut = replace(theirs, radii=radii, slope=Fraction(1, 3))
+    if claim.correction:
+        listed += [o.split_slope(mine), o.split_residual(mine)]
     gates = [(g.op, g.args, g.value if g.op in ("number", "power") else g.name or None) for g in o.graph.gates]
     for obligation in listed:
-        meaning = d.meaning(obligation.name, theirs)
+        meaning = d.meaning(obligation.name, cut if obligation.name.startswith(("shell", "line")) else theirs)
         assert obligation.by == meaning.by
         assert [(v.name, v.cells, v.listed) for v in obligation.variables] == [
             (v.name, v.cells, v.listed) for v in meaning.variables

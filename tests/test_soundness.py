@@ -129,7 +129,12 @@ v = "0.2*h"
         return
     names = {n: getattr(np, {"asin": "arcsin", "acos": "arccos", "atan": "arctan"}.get(n, n)) for n in
              ("sin", "cos", "tanh", "exp", "atan", "sqrt", "log", "sinh", "cosh", "asin", "acos", "tan")}  # fmt: skip
-    names |= {"abs": np.abs, "max": np.maximum, "clip": np.clip, "min": lambda *x: np.minimum(np.minimum(*x[:2]), x[-1])}
+    names |= {
+        "abs": np.abs,
+        "max": np.maximum,
+        "clip": np.clip,
+        "min": lambda *x: np.minimum(np.minimum(*x[:2]), x[-1]),
+    }
     step = eval(f"lambda v, d, h: {expression}", names)  # a test's own text, not input
     generator = np.random.default_rng(seed)
     bound, size = float(ends(results["bound"])[1]), 3000

@@ -109,7 +109,8 @@ def _settings(settings: tuple[str, ...]) -> dict[str, str]:
 def _prove(path: Path, output: Path | None, settings: dict[str, str], as_json: bool) -> int:
     from .claim import ClaimError, read_claim
     from .prove import prove as proved
-    from .report.terminal import outcome, show
+    from .report.cells import residual_by_cell
+    from .report.terminal import cells, outcome, show
 
     try:
         claim = read_claim(path, settings)
@@ -129,6 +130,10 @@ def _prove(path: Path, output: Path | None, settings: dict[str, str], as_json: b
         return 2
     unit = next(iter(claim.stances[0].states.values())).unit
     show(outcome(claim.title or path.name, certificate.results, unit), as_json)
+    if certificate.results["route"] == "split":
+        found = residual_by_cell(certificate)
+        if len(found) > 1:
+            show(cells(found, unit), as_json)
     click.echo(f"certificate: {target}  (re-verify: ultibound check {target})", err=as_json)
     if as_json:
         click.echo(json.dumps({**certificate.results, "certificate": str(target)}, ensure_ascii=False, sort_keys=True))

@@ -1,4 +1,4 @@
-"""Claim → step map → range of each obligation → theorems → requirements → certificate → check.
+"""Claim → step map → certified set → routes → orbits → requirements → certificate → check.
 
 Every number on a line is measured by the checker's own arithmetic on the tree that the search found; the finished
 certificate is checked again from its bytes before anyone sees it.
@@ -7,50 +7,43 @@ certificate is checked again from its bytes before anyone sees it.
 from __future__ import annotations
 
 import time
-from collections.abc import Callable
-from dataclasses import dataclass
+from collections.abc import Callable, Mapping
 from fractions import Fraction
-from math import log2
+from math import prod
 
 from .bounding.defined import undefined_point
-from .bounding.evaluate import Runner, to_float
-from .bounding.search import Effort, Found, Point, search
+from .bounding.evaluate import to_float
 from .certificate.certificate import Certificate, sealed
+from .certificate.enclosing import Encloser, Proved, Watch
 from .certificate.lines import Writer, downward, upward
 from .certificate.remarks import STOPS, Remarks, Search
 from .certificate.results import assembled
 from .checker import Verdict, check
-from .checker.reals import Undefined
 from .checker.results import Results
 from .checker.rules import Rejected
+from .checker.theorems import levels, movement, sharpest
 from .claim import Bad, Claim, ClaimError
-from .claim.obligations import Domain, Obligation, Obligations, not_yet
+from .claim.constants import constant
+from .claim.obligations import RANGED, Domain, Obligations, not_yet
 from .contraction import enough_radius
-from .stepmap.symbolic import compiled
+from .contraction.budget import budget, narrowed, told
+from .contraction.curve import Profile, inward
+from .contraction.orbits import Steering, orbits, slow_path
+from .contraction.samples import ends_of
 
-BITS = 72
 SHARPER = 1e-2  # factor on the gap when an undecided requirement is pursued
 FINEST = 1e-11
 COARSE = 0.03
-PATIENCE = 400  # leaves beyond which second derivatives pay
 TARGET_GAP = 1e-8  # the largest ball must be known to 1e-6: proofs/invariant-set.md (4)
-Watch = Callable[[str, int, float], None]
+SPARE = 0.01  # share of a smaller ball's radius left free
+ROUGH, QUICK, FEW, MOST = 3e-2, 24, 2, 60  # gap, leaves a shell and shells of a rough curve; shells of a sharp one
+TRIED = 4  # orbits, the furthest first
+REACH = 10_000  # steps of the longest path
+QUICKLY, MOST_EXPLAINED = 400, 500  # leaves of an estimate, and cells beyond which nothing is explained
 
 
 class InternalError(Exception):
     """The checker refuses a certificate that was just built: a defect of this program."""
-
-
-@dataclass(frozen=True, slots=True)
-class Proved:
-    """A range on a line: ends the checker measured, as a line number, and what stopped its search."""
-
-    line: int
-    lower: Fraction
-    upper: Fraction
-    least: Fraction  # the smallest and the largest value surely taken
-    most: Fraction
-    stopped: str
 
 
 def prove(claim: Claim, watch: Watch | None = None) -> Certificate:
@@ -76,17 +69,29 @@ def _proved(claim: Claim, watch: Watch) -> Certificate:
     """The certificate of a claim that can be used: tried at smaller gaps while that may decide a requirement."""
     gap = to_float(claim.gap)
     until = time.monotonic() + to_float(claim.seconds)
+    sharp = claim.route == "curve" or any(r.kind == "sharp_bound" for r in claim.requirements)
     while True:
-        attempt = Attempt(claim, gap, until, watch)
-        certificate, pursue = attempt.certificate()
+        attempt = _best(Attempt(claim, gap, until, watch, sharp))
+        if attempt.curve_may_help and not attempt.ranges.interrupted and time.monotonic() < until:
+            sharp = True
+            continue
         gap *= SHARPER
-        cut = any(x in STOPS for x in attempt.limits.values())  # a smaller gap would meet the same limit
-        if cut or not pursue or gap < FINEST or attempt.interrupted or time.monotonic() > until:
+        cut = any(x in STOPS for x in attempt.ranges.limits.values())  # a smaller gap would meet the same limit
+        if cut or not attempt.pursue or gap < FINEST or attempt.ranges.interrupted or time.monotonic() > until:
             break
+    certificate = attempt.certificate
     verdict = _checked(certificate, attempt)
     if verdict.status != "valid":
         raise InternalError(f"{verdict.place}: {verdict.reason}")
     return certificate
+
+
+def _best(whole: Attempt) -> Attempt:
+    """The attempt itself, or one on a smaller ball where nothing larger is kept and that decides no less."""
+    if whole.smaller is None or whole.ranges.interrupted:
+        return whole
+    attempt = Attempt(whole.claim, whole.gap, whole.until, whole.watch, whole.sharp, whole.smaller)
+    return attempt if attempt.results.settled and attempt.decided >= whole.decided else whole
 
 
 def _checked(certificate: Certificate, attempt: Attempt) -> Verdict:
@@ -98,199 +103,219 @@ def _checked(certificate: Certificate, attempt: Attempt) -> Verdict:
     try:
         return check(certificate.to_bytes(), watch)
     except KeyboardInterrupt:
-        if attempt.interrupted:
+        if attempt.ranges.interrupted:
             raise
         return check(certificate.to_bytes(), watch)
 
 
 class Attempt:
-    """One pass through the proof at one gap."""
+    """One pass through the proof at one gap.
 
-    def __init__(self, claim: Claim, gap: float, until: float, watch: Watch) -> None:
+    `sharp`: the error curve is followed to the gap, not just roughly. `within`: a radius smaller than the largest.
+    """
+
+    def __init__(
+        self, claim: Claim, gap: float, until: float, watch: Watch, sharp: bool, within: Fraction | None = None
+    ) -> None:
         self.claim, self.gap, self.until, self.watch = claim, gap, until, watch
+        self.sharp, self.within = sharp, within
         self.obligations, self.writer = Obligations(claim), Writer(claim)
-        self.interrupted = self.near_region = False
-        self.limits: dict[str, str] = {}
-        self._runners: dict[tuple[int, str, bool], Runner] = {}
+        self.ranges = Encloser(claim, self.obligations.graph, self.writer, gap, until, watch)
+        self.near_region = False
+        self.smaller: Fraction | None = None
+        self.moved = 0.0  # how far held quantities move the target in a step
+        self.pairs: dict[str, int] = {}
+        self._prove()
+        self.results = Results(self.writer.proof)
+        state = Search(self.ranges.limits, self.ranges.interrupted, self.near_region)
+        remarks = Remarks(claim, self.obligations, self.results, state, self._enough, self._explain).all()
+        self.pursue = any(p for _, p in remarks)
+        waiting = {
+            r.kind
+            for r, o in zip(claim.requirements, self.results.requirements, strict=True)
+            if o.verdict == "undecided"
+        }
+        self.curve_may_help = not sharp and bool(waiting & {"settles", "bound", "push", "steps", "radius"})
+        self.decided = sum(r.verdict != "undecided" for r in self.results.requirements)
+        text = assembled(claim, self.results, remarks)
+        self.certificate = sealed(claim, text, self.writer.pruned(self.results.needed), self.ranges.interrupted)
 
-    def certificate(self) -> tuple[Certificate, bool]:
-        """The certificate, and whether a smaller gap may still decide a requirement."""
-        s, w, o = self.obligations.state, self.writer, self.obligations
-        target = self.enclose(o.target(), None, points=True, gap=min(self.gap, TARGET_GAP))
-        region, inner = w.derivation.region()
+    def _prove(self) -> None:
+        """Lines for the certified set, the routes on it, orbits in it, and the requirements."""
+        o, w = self.obligations, self.writer
+        target = self._target()
+        ball = self._ball(target)
+        radius = w.proof.lines[ball].concludes["radius"]
+        ends = target.lower, target.upper
+        region = None if self.within is not None else self._region(target)
+        domain = Domain("ball", radius, ends) if region is None else Domain("region", Fraction(0), ends)
+        on = ball if region is None else region
+        moves = self._moves()
+        self._slope(domain, on, moves)
+        self._split(domain, on, moves)
+        if radius > 0:
+            self._curve(domain, on, moves)
+        invariant = region or self._invariant_ball(ball)
+        if invariant is not None:
+            for pair in self.pairs.values():
+                self._bound(invariant, pair)
+            self._orbit(invariant)
+            self._paths(invariant, target.lower if target.lower == target.upper else None)
+        for number, r in enumerate(self.claim.requirements, 1):
+            if r.kind in RANGED:
+                self.ranges.enclose(o.requirement(number, domain), on)
+
+    def _target(self) -> Proved:
+        s, claim = self.obligations.state, self.claim
+        target = self.ranges.enclose(self.obligations.target(), None, gap=min(self.gap, TARGET_GAP))
         if target is None:
             raise ClaimError.of(
-                self.claim.place,
-                f"target.{s}",
-                "no finite range of the target can be shown; state it in a simpler form",
+                claim.place, f"target.{s}", "no finite range of the target can be shown; state it in a simpler form"
             )
-        self._target_inside(target, region)
+        self._target_inside(self.writer.derivation.region()[0])
+        return target
+
+    def _ball(self, target: Proved) -> int:
+        """The largest ball about the target inside the region, or the smaller one that is tried."""
+        inner = self.writer.derivation.region()[1]
         radius = min(target.lower - inner[0], inner[1] - target.upper)
         if radius < 0:
-            raise ClaimError.of(
-                self.claim.place, f"target.{s}", "cannot be shown to lie inside the region; widen the region a little"
-            )
-        ball = w.theorem("largest-ball", "ball", [target.line], {"radius": downward(radius)})
-        radius = w.proof.lines[ball].concludes["radius"]
-        domain, on = self._certified(target, Domain("ball", radius, (target.lower, target.upper)), ball)
-        pair = self._slope_route(domain, on)
-        invariant = on if on != ball else None
-        if invariant is None and pair is not None:
-            try:
-                invariant = w.theorem("invariant-ball", "invariant", [ball, pair], {})
-            except Rejected:
-                invariant = None
-        if invariant is not None and pair is not None:
-            self._bound(invariant, pair)
-        for number, r in enumerate(self.claim.requirements, 1):
-            if r.kind in ("value", "sensitivity"):
-                self.enclose(o.requirement(number, domain), on, points=True)
-        results = Results(w.proof)
-        state = Search(self.limits, self.interrupted, self.near_region)
-        remarks = Remarks(self.claim, o, results, state, lambda: self._enough(results)).all()
-        text = assembled(self.claim, results, remarks)
-        return sealed(self.claim, text, w.pruned(results.needed), self.interrupted), any(p for _, p in remarks)
+            place, name = self.claim.place, f"target.{self.obligations.state}"
+            raise ClaimError.of(place, name, "cannot be shown to lie inside the region; widen the region a little")
+        radius = min(radius, self.within) if self.within is not None else radius
+        return self.writer.theorem("largest-ball", "ball", [target.line], {"radius": downward(radius)})
 
-    def _certified(self, target: Proved, ball: Domain, on: int) -> tuple[Domain, int]:
-        """S: the region if it is mapped into itself (then a line says so), else the largest ball in it."""
+    def _region(self, target: Proved) -> int | None:
+        """The line that the region is mapped into itself, where it is: proofs/invariant-set.md (1)."""
         for gap in (COARSE, self.gap):  # only inclusion counts: few leaves show it where there is room
-            image = self.enclose(self.obligations.image(), None, points=gap == self.gap, gap=gap)
+            image = self.ranges.enclose(self.obligations.image(), None, points=gap == self.gap, gap=gap)
             if image is not None:
                 try:
-                    line = self.writer.theorem("invariant-region", "invariant", [target.line, image.line], {})
-                    return Domain("region", Fraction(0), ball.target), line
+                    return self.writer.theorem("invariant-region", "invariant", [target.line, image.line], {})
                 except Rejected:
                     low, high = self.obligations.region()[1]
                     self.near_region = low <= image.least and image.most <= high
-        return ball, on
+        return None
 
-    def _slope_route(self, domain: Domain, on: int) -> int | None:
-        """Gain and residual: proofs/slope.md."""
-        o, w = self.obligations, self.writer
-        slope = self.enclose(o.slope(domain), on, magnitude=True)
-        moves = [self.enclose(o.target_slope(h), None, magnitude=True) for h in o.moving()]
-        changes = [w.derivation.change(h)[1] for h in o.moving()]
-        moved = sum((_size(m) * c for m, c in zip(moves, changes, strict=True) if m), Fraction(0))
+    def _moves(self) -> list[Proved] | None:
+        """How the target moves with held quantities that change: proofs/slope.md (3)."""
+        found = [self.ranges.enclose(self.obligations.target_slope(h), None, True) for h in self.obligations.moving()]
+        known = [m for m in found if m is not None]
+        return known if len(known) == len(found) else None
+
+    def _moved(self, moves: list[Proved]) -> Fraction:
+        return movement(self.writer.derivation, [self.writer.proof.lines[m.line] for m in moves])
+
+    def _slope(self, domain: Domain, on: int, moves: list[Proved] | None) -> None:
+        """Gain and residual of the slope route: proofs/slope.md."""
+        self.moved = to_float(self._moved(moves)) if moves else 0.0
+        slope = self.ranges.enclose(self.obligations.slope(domain), on, magnitude=True)
         # the residual is a sum: its gap, not that of one part, is what counts
-        miss = self.enclose(o.miss(), None, magnitude=True, floor=self.gap * to_float(moved))
-        known = [p for p in (slope, miss, *moves) if p is not None]
-        if len(known) < 2 + len(moves):
-            return None
-        concludes = {"gain": upward(_size(known[0])), "residual": upward(_size(known[1]) + moved)}
-        return w.theorem("slope", "slope", [p.line for p in known], concludes)
+        floor = self.gap * self.moved
+        miss = self.ranges.enclose(self.obligations.miss(), None, magnitude=True, floor=floor)
+        self._pair("slope", slope, miss, moves)
+
+    def _split(self, domain: Domain, on: int, moves: list[Proved] | None) -> None:
+        """Gain and residual of the split route, where a correction is named: proofs/split.md."""
+        if self.claim.correction:
+            slope = self.ranges.enclose(self.obligations.split_slope(domain), on, magnitude=True)
+            floor = self.gap * self.moved
+            kept = self.ranges.enclose(self.obligations.split_residual(domain), on, magnitude=True, floor=floor)
+            self._pair("split", slope, kept, moves)
+
+    def _pair(self, route: str, slope: Proved | None, residual: Proved | None, moves: list[Proved] | None) -> None:
+        if slope is not None and residual is not None and moves is not None:
+            concludes = {"gain": upward(slope.size), "residual": upward(residual.size + self._moved(moves))}
+            uses = [p.line for p in (slope, residual, *moves)]
+            self.pairs[route] = self.writer.theorem(route, route, uses, concludes)
+
+    def _curve(self, domain: Domain, on: int, moves: list[Proved] | None) -> None:
+        """Shells of the error curve, the line above them and the sharp bound: proofs/curve.md."""
+        o, w, claim = self.obligations, self.writer, self.claim
+        if moves is None:
+            return
+        (low, high), ends = o.region()[0], domain.target
+        outermost = domain.radius if domain.kind == "ball" else max(ends[1] - low, high - ends[0])
+        error = o.error(domain, outermost)
+        profile = Profile(self.ranges.runner(error, False), error, f"error({o.state})", to_float(self._moved(moves)))
+        if domain.kind == "ball":
+            kept = profile.largest_kept(SPARE)
+            if kept is not None and self.within is None and kept < 0.995 * to_float(outermost):
+                self.smaller = Fraction(f"{kept:.4g}")
+
+        def level(rho: Fraction) -> float:
+            if not self.sharp:
+                return profile.at(to_float(rho))
+            found = self.ranges.search(o.error(domain, rho), True, gap)
+            return max(abs(found.upper), abs(found.lower)) + self.moved
+
+        k = profile.slope()
+        # what is lost in a shell is lost again in each that it leads into: the gap over 1 - k
+        gap, cells = (self.gap * to_float(1 - k) / 3, claim.cells) if self.sharp else (ROUGH, QUICK)
+        radii = inward(outermost, level, 2 * gap, MOST if self.sharp else FEW)
+        written = w.shells(radii, k, on)
+        found = []
+        for j in range(1, len(radii) + 1):
+            shell = self.ranges.enclose(o.shell(j, domain, radii), written, True, points=False, gap=gap, cells=cells)
+            if shell is None:
+                return
+            found.append(shell.line)
+        above = self.ranges.enclose(o.line(domain, k), written, points=False, gap=gap, cells=cells, upper=True)
+        if above is None:
+            return
+        moved = self._moved(moves)
+        uses = [written, *found, above.line, *(m.line for m in moves)]
+        sharp = sharpest(radii, levels([w.proof.lines[n] for n in found], moved))
+        residual = max(above.upper, Fraction(0)) + moved
+        concludes = {"gain": upward(k), "residual": upward(residual), "sharp": upward(sharp)}
+        self.pairs["curve"] = w.theorem("curve", "curve", uses, concludes)
+
+    def _invariant_ball(self, ball: int) -> int | None:
+        """proofs/invariant-set.md (3), by any route."""
+        for pair in self.pairs.values():
+            try:
+                return self.writer.theorem("invariant-ball", "invariant", [ball, pair], {})
+            except Rejected:
+                continue
+        return None
 
     def _bound(self, invariant: int, pair: int) -> None:
-        concluded = self.writer.proof.lines[pair].concludes
-        if concluded["gain"] < 1:
-            bound = concluded["residual"] / (1 - concluded["gain"])
-            self.writer.theorem("ultimate-bound", "bound", [invariant, pair], {"bound": upward(bound)})
+        found = self.writer.proof.lines[pair]
+        if found.concludes["gain"] < 1:
+            bound = found.concludes["residual"] / (1 - found.concludes["gain"])
+            self.writer.theorem("ultimate-bound", f"bound[{found.rule}]", [invariant, pair], {"bound": upward(bound)})
 
-    def enclose(
-        self,
-        obligation: Obligation,
-        on: int | None,
-        magnitude: bool = False,
-        points: bool = True,
-        gap: float = 0.0,
-        floor: float = 0.0,
-    ) -> Proved | None:
-        """A range line and the points nearest its ends; None where the checker finds no finite range.
+    def _steering(self) -> Steering:
+        o = self.obligations
+        held = frozenset(n for n, q in self.claim.uncertain.items() if q.held)
+        target = self.ranges.runner(o.target(), False)
+        return Steering(self.ranges.runner(o.image(), False), o.image(), o.target(), target, o.state, held)
 
-        `floor` is an absolute gap that is enough whatever the size of the quantity.
-        """
-        w, name, wanted = self.writer, obligation.name, gap or self.gap
-        rational, share = w.rational(name, on), 1.0
-        for _ in range(5):
-            found = self._search(obligation, magnitude, wanted * share, floor * share)
-            bits = 0 if rational else BITS + _extra(found)
-            self.watch(f"{name}: enclosing the leaves in the checker's arithmetic", found.leaves, found.upper)
-            try:
-                ends = w.range(name, found.trees, bits, on)
-            except KeyboardInterrupt:
-                self._interrupt()
-                continue
-            except Undefined as why:
-                self.limits[name] = str(why)
-                share /= 16
-                if found.stopped:
-                    return None
-                continue
-            taken = [self._point(name, p, bits, on) for p in (found.highest, found.lowest)]
-            if found.stopped or _close(ends, [t[1] for t in taken if t], magnitude, wanted, floor):
-                break
-            share /= 8
-        else:
-            if name in self.limits:
-                return None
-        self.limits[name] = found.stopped
-        line = w.enclosed("range", name, {"bits": bits, "trees": list(found.trees)}, ends, on)
-        if points:
-            self._write_points(name, [t for t in taken if t], magnitude, bits, on)
-        concluded = w.proof.lines[line].concludes
-        low, high = concluded["lower"], concluded["upper"]
-        least, most = min((t[1][1] for t in taken if t), default=high), max((t[1][0] for t in taken if t), default=low)
-        return Proved(line, low, high, least, most, found.stopped)
-
-    def _search(self, obligation: Obligation, magnitude: bool, gap: float, floor: float = 0.0) -> Found:
-        """Witnesses for a range; of a value that takes many leaves, with the second-order form."""
-
-        def watch(leaves: int, high: float) -> None:
-            self.watch(obligation.name, leaves, high)
-
-        def attempt(curved: bool) -> Found:
-            patience = 10**9 if curved or obligation.by else PATIENCE
-            effort = Effort(gap, self.claim.cells, self.until, watch, floor, patience)
-            return search(self._runner(obligation, curved), obligation, magnitude, effort)
-
-        try:
-            found = attempt(False)
-            return attempt(True) if found.stopped == "patience" else found
-        except KeyboardInterrupt:
-            self._interrupt()
-            return attempt(False)
-
-    def _runner(self, obligation: Obligation, curved: bool) -> Runner:
-        key = obligation.root, obligation.by, curved
-        if key not in self._runners:
-            names = [v.name for v in obligation.variables]
-            program = compiled(self.obligations.graph, obligation.root, obligation.by, names, curved)
-            self._runners[key] = Runner(program, names, self.claim.libraries)
-        return self._runners[key]
-
-    def _interrupt(self) -> None:
-        """The first Ctrl-C stops every search where it is; the second one ends the program."""
-        if self.interrupted:
-            raise KeyboardInterrupt
-        self.interrupted, self.until = True, 0.0
-
-    def _point(
-        self, name: str, point: Point, bits: int, on: int | None
-    ) -> tuple[dict[str, str], tuple[Fraction, Fraction]] | None:
-        at = self.writer.spelled(name, point, on)
-        try:
-            return at, self.writer.point(name, at, bits, on)
-        except (Undefined, Rejected):
-            return None
-
-    def _write_points(
-        self,
-        name: str,
-        taken: list[tuple[dict[str, str], tuple[Fraction, Fraction]]],
-        magnitude: bool,
-        bits: int,
-        on: int | None,
-    ) -> None:
-        """The points that say most: the one of largest magnitude, or those of the largest and smallest value."""
-        if not taken:
+    def _orbit(self, invariant: int) -> None:
+        """A periodic orbit as far from the target as the search finds one: proofs/orbit.md (1)."""
+        domain = self.writer.domain(invariant)
+        if self.ranges.interrupted or domain is None:
             return
-        top, bottom = max(taken, key=lambda t: t[1][0]), min(taken, key=lambda t: t[1][1])
-        chosen = [top] if top is bottom or top[0] == bottom[0] else [top, bottom]
-        if magnitude:
-            chosen = [max(chosen, key=lambda t: max(t[1][0], -t[1][1]))]
-        for at, ends in chosen:
-            self.writer.enclosed("point", name, {"at": at, "bits": bits}, ends, on)
+        low, high = self.writer.derivation.region()[1]
+        reach = (
+            to_float(domain.radius) if domain.ball else to_float(max(high - domain.target[0], domain.target[1] - low))
+        )
+        found = sorted(orbits(self._steering(), [0.3 * reach, -0.3 * reach]), key=lambda x: -x[0])
+        for _, course in found[:TRIED]:
+            if self.writer.orbit(course.start, course.held, course.steps, invariant):
+                return
 
-    def _target_inside(self, target: Proved, region: tuple[Fraction, Fraction]) -> None:
+    def _paths(self, invariant: int, target: Fraction | None) -> None:
+        """A slow path for each `steps` requirement: proofs/orbit.md (2)."""
+        values = self.claim.values
+        for r in self.claim.requirements:
+            if r.kind == "steps" and not r.over and r.start is not None and r.end is not None:
+                start, end = constant(r.start, values)[0], constant(r.end, values)[1]
+                course = slow_path(self._steering(), start, to_float(end), REACH, target)
+                if course is not None:
+                    self.writer.path(course.start[0], course.held, course.steps, invariant)
+
+    def _target_inside(self, region: tuple[Fraction, Fraction]) -> None:
         s = self.obligations.state
         for n, line in self.writer.proof.lines.items():
             if line.rule == "point" and (line.concludes["lower"] > region[1] or line.concludes["upper"] < region[0]):
@@ -303,38 +328,36 @@ class Attempt:
                     f"[{float(region[0]):.6g}, {float(region[1]):.6g}]; widen the region or narrow the held quantities",
                 )  # fmt: skip
 
-    def _enough(self, results: Results) -> float | None:
+    def _explain(self, enough: Callable[[float, float], bool]) -> str:
+        """What each uncertain quantity costs of the slope route, for people (nothing proved)."""
+        results, o = self.results, self.obligations
+        target, radius = results.centre, results.radius.lower
+        if target.lower is None or target.upper is None or radius is None:
+            return ""
+        kind = "region" if results.kind == "region" else "ball"
+        slope, miss = o.slope(Domain(kind, radius, (target.lower, target.upper))), o.miss()
+        if prod(len(v.cells) for v in slope.variables) > MOST_EXPLAINED:
+            return ""
+
+        def estimate(shares: Mapping[str, float]) -> tuple[float, float]:
+            found = [self.ranges.search(narrowed(x, shares), True, COARSE, cells=QUICKLY) for x in (slope, miss)]
+            k, rest = (max(abs(f.upper), abs(f.lower)) for f in found)
+            return k, rest + self.moved
+
+        met = {v.name: v for x in (slope, miss) for v in x.variables if v.name in self.claim.uncertain}
+        costs = budget(estimate, sorted(met), enough)
+        spans = {n: ends_of(v) for n, v in met.items() if not v.listed}
+        return told(costs, *estimate({}), spans)
+
+    def _enough(self) -> float | None:
         """An estimate of the radius that would carry a bound, for a region too small (nothing proved)."""
-        if results.residual.upper is None or results.gain.upper is None or self.interrupted:
+        results = self.results
+        if results.residual.upper is None or results.gain.upper is None or self.ranges.interrupted:
             return None
         target = (results.centre.lower or Fraction(0), results.centre.upper or Fraction(0))
 
         def gain(radius: float) -> float:
-            found = self._search(self.obligations.slope(Domain("ball", Fraction(radius), target)), True, 1e-2)
+            found = self.ranges.search(self.obligations.slope(Domain("ball", Fraction(radius), target)), True, 1e-2)
             return max(abs(found.upper), abs(found.lower))
 
         return enough_radius(to_float(results.radius.lower or Fraction(0)), gain, to_float(results.residual.upper))
-
-
-def _close(
-    ends: tuple[Fraction, Fraction], taken: list[tuple[Fraction, Fraction]], magnitude: bool, gap: float, floor: float
-) -> bool:
-    """Whether the measured ends are within the gap of values surely taken."""
-    if not taken:
-        return False
-    high, low = max(t[0] for t in taken), min(t[1] for t in taken)
-    share, least = Fraction(gap), max(Fraction(gap) / 10**6, Fraction(floor))
-    if magnitude:
-        most = max(high, -low, Fraction(0))
-        return max(abs(ends[0]), abs(ends[1])) - most <= max(share * most, least)
-    return ends[1] - high <= max(share * abs(high), least) and low - ends[0] <= max(share * abs(low), least)
-
-
-def _size(p: Proved) -> Fraction:
-    return max(abs(p.lower), abs(p.upper))
-
-
-def _extra(found: Found) -> int:
-    """More fractional bits where the values are small, so that their last digits are kept."""
-    size = max(abs(found.upper), abs(found.lower))
-    return min(2000, max(0, int(-log2(size)))) if 0 < size < 1 else 0

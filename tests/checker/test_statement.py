@@ -356,15 +356,15 @@ def test_constants_without_a_value(text: str) -> None:
 
 
 @pytest.mark.parametrize(("old", "new", "says"), [
-    ("format = 1", "format = 2", "format"), ("format = 1", "format = 1.0", "format"), ("title =", "titel =", "did you mean title"), ("horizon = 2", "horizon = 65", "horizon"), ("shrink = true", "shrink = 1", "shrink"),
+    ("format = 1", "format = 2", "format"), ("format = 1", "format = 1.0", "format"), ("title =", "titel =", "unknown key 'titel'"), ("horizon = 2", "horizon = 65", "horizon"), ("shrink = true", "shrink = 1", "shrink"),
     ('route = "slope"', 'route = "fast"', "route"), ('["shift"]', '["v"]', "correction"), ('["shift"]', '["shift", "shift"]', "correction"), ("g = 9.81", "g = 1_0", "1_0"), ("g = 9.81", "g = 0x1F", "0x1F"), ("g = 9.81", "g = +3", "+3"),
     ("g = 9.81", "g = inf", "constants.g"), ("g = 9.81", "g = nan", "constants.g"), ("g = 9.81", "g = 1979-05-27", "1979"), ("g = 9.81", "g = true", "constants.g"), ("g = 9.81", "g = 1e1000000000", "1e1000000000"),
     ("g = 9.81", "g = 9.81\ng = 9.8", "TOML"), ("g = 9.81", "t = 9.81", "'t'"), ("g = 9.81", "kappa = 9.81", "twice"), ("z = 0.62", 'z = "half"', "half -> z -> half"), ("kappa = 0.18", 'kappa = "T"', "gains.kappa"),
     ("[-0.2, 1.0]", "[1.0, -0.2]", "state.v"), ("[-0.2, 1.0]", '["pi", "sqrt(9.8)"]', "state.v"), ("held = true, change", "change", "v_cmd.change"), ("change = 0.02", "change = -1", "v_cmd.change"), ("values = [0.3", "range = [0, 1], values = [0.3", "period"),
-    ("rise = { range", "rise = { within = true, range", "rise.within"), ('w = "sqrt(g/z)"', 'w = "foot"', "foot -> w -> foot"), ("kappa*(v", "kapa*(v", "did you mean kappa"), ('v = "v_cmd"', 'v = "T"', "target.v: T"), ('v = "v_cmd"', 'v = "foot"', "foot -> shift -> target(v) -> foot"),
+    ("rise = { range", "rise = { within = true, range", "rise.within"), ('w = "sqrt(g/z)"', 'w = "foot"', "foot -> w -> foot"), ("kappa*(v", "kapa*(v", "unknown name kapa"), ('v = "v_cmd"', 'v = "T"', "target.v: T"), ('v = "v_cmd"', 'v = "foot"', "foot -> shift -> target(v) -> foot"),
     ('v = "v_cmd"', 'v = "target(v)"', "target(v) -> target(v)"), ("[next]\nv", "[next]\nu", "next.u"), ('kind = "box"', 'kind = "round"', "metric.kind"), ('v = "1/2"', "v = 0", "metric.weights.v"), ("cells = 1000", "cells = 1e3", "effort"), ('gap = "1/500"', "gap = 1", "effort"),
     ("gain <= 0.8", "gain >= 0.8", "require[1]"), ("gain <= 0.8", "radius <= 0.8", "require[1]"), ("gain <= 0.8", "0.8 >= gain", "require[1]"), ("gain <= 0.8", "gain", "require[1]"), ("gain <= 0.8", "gain <= v", "require[1]"),
-    ("gain <= 0.8", "push(v, during) > 1", "needs dynamics"), ("gain <= 0.8", "throughout(v < 1)", "needs dynamics"), ("gain <= 0.8", "bound(vv) < 1", "did you mean v"), ("gain <= 0.8", 'value(v)"\nin = "left', "require[1].in"),
+    ("gain <= 0.8", "push(v, during) > 1", "needs dynamics"), ("gain <= 0.8", "throughout(v < 1)", "needs dynamics"), ("gain <= 0.8", "bound(vv) < 1", "vv is no state"), ("gain <= 0.8", 'value(v)"\nin = "left', "require[1].in"),
     ('"value(next(v) - v) > -1"', '"value(v)"\nover = { foot = [0, 1] }', "require[4].over"), ("over = { foot", "over = { foto", "require[3].over"), ("[effort]", "[weather]\n[effort]", "weather"), ("[effort]", "[library]\n[effort]", "library"),
     ('title = "', 'title = "\u0007', "control"), ('title = "', "title = \"\"\"", "not closed"), ("[effort]", "[[effort]]", "effort"),
 ])  # fmt: skip

@@ -13,6 +13,7 @@ from ..claim.model import Library
 from ..stepmap.program import Program, Step
 from .intervals import UNARY, Branch, Floats, Pair, Table, div, hull, mul, power
 
+NEAR = 1e-15  # share by which rounding may move a tie
 Corner = tuple[str, int, int]  # "max" or "min" and the registers of its two branches
 
 
@@ -46,8 +47,11 @@ class Run:
 class Runner:
     """A program made ready for numpy: `variables` name the columns of the boxes it is given."""
 
-    def __init__(self, program: Program, variables: Sequence[str], libraries: Sequence[Library]) -> None:
+    def __init__(
+        self, program: Program, variables: Sequence[str], libraries: Sequence[Library], derivative: bool = False
+    ) -> None:
         self.program, self.variables = program, list(variables)
+        self.slack = NEAR if derivative else -NEAR  # at a tie a derivative meets both branches, a value one: corners.md
         self._tables: dict[tuple[int, str], Table] = {}
         for step in program.steps:
             if step.op == "reading":
@@ -80,7 +84,7 @@ class Runner:
                     pair, met[number] = table.read([done[a] for a in step.args], step.orders, count, fixed)
                     done.append(pair)
                 elif step.op in ("abs", "max", "min", "pick"):
-                    done.append(_corner(step, done, sides, hold, count))
+                    done.append(_corner(step, done, sides, hold, count, self.slack))
                 else:
                     done.append(self._step(step, done, low, high))
             defined = np.ones(count, bool)
@@ -128,7 +132,12 @@ class Runner:
 
 
 def _corner(
-    step: Step, done: list[Pair], sides: dict[Corner, tuple[Any, Any]], hold: dict[Corner, Any] | None, count: int
+    step: Step,
+    done: list[Pair],
+    sides: dict[Corner, tuple[Any, Any]],
+    hold: dict[Corner, Any] | None,
+    count: int,
+    slack: float,
 ) -> Pair:
     """A corner, or the derivative of the branch it takes: hulls where both are met (proofs/corners.md)."""
     kind = "min" if "min" in (step.op, step.name) else "max"
@@ -139,8 +148,10 @@ def _corner(
         take = hold[key] == 0
         return np.where(take, first[0], second[0]), np.where(take, first[1], second[1])
     if key not in sides:
-        below, above = (a[1] < b[0], b[1] < a[0]) if kind == "max" else (b[1] < a[0], a[1] < b[0])
-        sides[key] = np.broadcast_to(~below, (count,)), np.broadcast_to(~above, (count,))
+        room = slack * (np.maximum(np.abs(a[0]), np.abs(a[1])) + np.maximum(np.abs(b[0]), np.abs(b[1])))
+        below, above = a[1] + room < b[0], b[1] + room < a[0]
+        below, above = (below, above) if kind == "max" else (above & ~below, below)
+        sides[key] = np.broadcast_to(~below, (count,)), np.broadcast_to(~above | below, (count,))
     if not slopes:
         pick = np.maximum if kind == "max" else np.minimum
         low = pick(a[0], b[0])

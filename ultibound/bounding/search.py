@@ -37,6 +37,7 @@ class Effort:
     watch: Callable[[int, float], None] = lambda leaves, gap: None
     floor: float = 0.0  # an absolute gap that is enough
     patience: int = 10**9  # leaves after which to give up, for a form that needs fewer
+    upper: bool = False  # only the upper end is wanted
 
 
 @dataclass(frozen=True, slots=True)
@@ -142,6 +143,8 @@ def _allowed(best: tuple[_Best, _Best], magnitude: bool, effort: Effort) -> tupl
     if magnitude:
         top = max(abs(top), abs(bottom))
         bottom = -top
+    if effort.upper:
+        return top + max(gap * abs(top), least), -np.inf
     return top + max(gap * abs(top), least), bottom - max(gap * abs(bottom), least)
 
 
@@ -160,7 +163,40 @@ def _bisect(boxes: _Boxes, live: Any, variable: Any) -> Any:
 def _examine(runner: Runner, boxes: _Boxes, part: Any, best: tuple[_Best, _Best], derivative: bool) -> Floats:
     """Bounds of a batch by every form; improves the attained values; what splitting by each variable would gain."""
     whole = runner(boxes.low[part], boxes.high[part])
-    case = _cases(whole, part, derivative)
+    case = _cases(whole, np.arange(len(part)), derivative)
+    found = _forms(runner, boxes, part, best, whole, case, derivative)
+    upper, lower = np.fmin(whole.high, found.upper), np.fmax(whole.low, found.lower)
+    centred_low, centred_high, span = found.centred_low, found.centred_high, found.span
+    if not derivative:
+        straddle = np.flatnonzero(whole.open() & (_count(whole) <= MOST_OPEN))
+        if len(straddle):  # a value is also that of one of the branches: proofs/corners.md (3)
+            case = _cases(whole, straddle, True)
+            more = _forms(runner, boxes, part[straddle], best, whole, case, False)
+            upper[straddle] = np.fmin(upper[straddle], more.upper)
+            lower[straddle] = np.fmax(lower[straddle], more.lower)
+            centred_low[straddle] = np.fmax(centred_low[straddle], more.centred_low)
+            centred_high[straddle] = np.fmin(centred_high[straddle], more.centred_high)
+    boxes.upper[part], boxes.lower[part] = np.fmin(upper, found.second_high), np.fmax(lower, found.second_low)
+    boxes.plain[part] = np.stack([whole.low, whole.high, centred_low, centred_high, lower, upper], axis=1)
+    return span
+
+
+@dataclass(frozen=True)
+class _Forms:
+    """Bounds of boxes by the forms that use slopes, and the gain of splitting by each variable."""
+
+    upper: Floats
+    lower: Floats
+    centred_low: Floats
+    centred_high: Floats
+    second_low: Any
+    second_high: Any
+    span: Floats
+
+
+def _forms(
+    runner: Runner, boxes: _Boxes, part: Any, best: tuple[_Best, _Best], whole: Run, case: _Cases, derivative: bool
+) -> _Forms:
     low, high = boxes.low[part][case.owner], boxes.high[part][case.owner]
     n = len(low)
     run = whole if case.hold is None else runner(low, high, hold=case.hold)
@@ -185,24 +221,23 @@ def _examine(runner: Runner, boxes: _Boxes, part: Any, best: tuple[_Best, _Best]
     ok2 = np.tile(usable, 2) & ~(face.split if derivative else np.zeros(2 * n, bool))
     reach, plain = np.where(ok2, reach, np.inf), np.where(usable, plain, np.inf)
     at_low, at_high = at.low[2 * n :] - plain, at.high[2 * n :] + plain
-    tops = np.fmin(np.where(usable | ~derivative, face.high[:n], np.inf), at.high[:n] + reach[:n])
-    bottoms = np.fmax(np.where(usable | ~derivative, face.low[n:], -np.inf), at.low[n : 2 * n] - reach[n:])
-    boxes.upper[part] = np.fmin(whole.high, case.most(tops))
-    boxes.lower[part] = np.fmax(whole.low, -case.most(-bottoms))
-    columns = [whole.low, whole.high, -case.most(-at_low), case.most(at_high), boxes.lower[part], boxes.upper[part]]
-    boxes.plain[part] = np.stack(columns, axis=1)
-    if run.curvature and not derivative:
-        low_s, high_s = _second_order(runner, run, low, high)
-        boxes.lower[part] = np.fmax(boxes.lower[part], low_s)
-        boxes.upper[part] = np.fmin(boxes.upper[part], high_s)
+    tops = np.fmin(np.where(usable, face.high[:n], np.inf), at.high[:n] + reach[:n])
+    bottoms = np.fmax(np.where(usable, face.low[n:], -np.inf), at.low[n : 2 * n] - reach[n:])
+    second_low: Any = -np.inf
+    second_high: Any = np.inf
+    if run.curvature and not derivative and case.hold is None:
+        second_low, second_high = _second_order(runner, run, low, high)
     if case.hold is not None:  # only what the map itself takes is attained
-        at = runner(centre, centre, gradient=False, branches=run.branches_of(rows[: 2 * n]))
+        at = runner(centre, centre, gradient=False, branches=run.branches_of(rows[: 2 * n]) if derivative else None)
     best[0].offer(_known(at.low[:n]), part[case.owner], choice[:n])
     best[1].offer(_known(-at.high[n : 2 * n]), part[case.owner], choice[n:])
     with np.errstate(invalid="ignore"):  # an infinite slope over an edge of no width
         span = np.maximum(np.abs(face.gradient_low), np.abs(face.gradient_high)) * radius
     span = np.where(radius > 0, span, 0.0)
-    return case.most(np.maximum(span[:n], span[n:]))
+    return _Forms(
+        case.most(tops), -case.most(-bottoms), -case.most(-at_low), case.most(at_high), second_low, second_high,
+        case.most(np.maximum(span[:n], span[n:])),
+    )  # fmt: skip
 
 
 @dataclass(frozen=True)
@@ -222,21 +257,26 @@ class _Cases:
         return values if self.hold is None else np.maximum.reduceat(values, self.starts, axis=0)
 
 
-def _cases(run: Run, part: Any, derivative: bool) -> _Cases:
-    n = len(part)
-    if not derivative or not run.sides:
+def _count(run: Run) -> Any:
+    """How many corners meet both branches, a box."""
+    return np.sum([first & second for first, second in run.sides.values()], axis=0, dtype=int)
+
+
+def _cases(run: Run, rows: Any, apart: bool) -> _Cases:
+    """Some boxes of a run, once a choice of branches if they are to be told `apart`."""
+    n = len(rows)
+    if not apart or not run.sides:
         return _Cases(np.arange(n), np.arange(n), np.ones(n, bool), None)
-    both = {k: first & second for k, (first, second) in run.sides.items()}
-    count = np.sum(list(both.values()), axis=0)
+    count = _count(run)[rows]
     smooth = count <= MOST_OPEN
     times = np.where(smooth, 2 ** np.minimum(count, MOST_OPEN), 1)
     owner, starts = np.repeat(np.arange(n), times), np.cumsum(times) - times
     rank, shift = np.arange(len(owner)) - starts[owner], np.zeros(n, int)
     hold = {}
-    for k, (first, _) in run.sides.items():
-        decided = np.where(first, 0, 1)[owner]
-        hold[k] = np.where(both[k][owner], (rank >> shift[owner]) & 1, decided)
-        shift = shift + both[k]
+    for k, (first, second) in run.sides.items():
+        both = (first & second)[rows]
+        hold[k] = np.where(both[owner], (rank >> shift[owner]) & 1, np.where(first[rows], 0, 1)[owner])
+        shift = shift + both
     return _Cases(owner, starts, smooth[owner], hold)
 
 

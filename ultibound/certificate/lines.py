@@ -2,17 +2,18 @@
 
 from __future__ import annotations
 
-from collections.abc import Mapping
+from collections.abc import Mapping, Sequence
 from fractions import Fraction
 from itertools import product
 from typing import Any
 
+from ..checker.courses import Course, course_variables, nearest
 from ..checker.derive import Derivation, Domain, Meaning
 from ..checker.exact import Exact
 from ..checker.numerals import decimal_down, decimal_up
 from ..checker.ranges import Evaluator, walk
-from ..checker.reals import Scaled
-from ..checker.rules import Line, Proof, place
+from ..checker.reals import Scaled, Undefined
+from ..checker.rules import Line, Proof, Rejected, place
 from ..checker.statement import read_statement
 from ..claim import Claim
 
@@ -20,6 +21,7 @@ DIGITS = 25
 SHORT, EXACT = 40, 400
 RATIONAL_CELLS = 64
 RATIONAL_TERMS = 400
+FEW_STEPS = 50  # of an exact path: its fractions grow with every step
 IRRATIONAL = frozenset(
     ["pi", "exp", "log", "sin", "cos", "tan", "asin", "acos", "atan", "sinh", "cosh", "tanh", "sqrt"]
 )
@@ -95,6 +97,85 @@ class Writer:
         self.proof.add(line)
         self.raw.append(line)
         return len(self.raw)
+
+    def shells(self, radii: tuple[Fraction, ...], slope: Fraction, on: int) -> int:
+        """Appends the line that cuts the set into shells."""
+        witness = {"radii": [str(r) for r in radii], "slope": str(slope)}
+        line = {"rule": "shells", "proves": "shells", "uses": [on], "witness": witness, "concludes": {}}
+        self.proof.add(line)
+        self.raw.append(line)
+        return len(self.raw)
+
+    def orbit(
+        self,
+        start: tuple[Fraction, Fraction],
+        held: Mapping[str, Fraction],
+        steps: Sequence[Mapping[str, Fraction]],
+        on: int,
+    ) -> bool:
+        """Appends a periodic orbit near a start, if an interval about it brackets one."""
+        x = start[0]
+        share = max(abs(x), Fraction(1, 10**9))
+        brackets = [(y, y, 0) for y in dict.fromkeys((x.limit_denominator(10**6), x))]
+        brackets += [(x - share / d, x + share / d, 128) for d in (10**13, 10**11, 10**9)]
+        low, high = self.derivation.region()[1]
+        for a, b, bits in brackets:
+            witness = {"bits": bits, "start": [str(max(a, low)), str(min(b, high))]}
+            if self._course("orbit", witness, held, steps, on):
+                return True
+        return False
+
+    def path(
+        self, start: Fraction, held: Mapping[str, Fraction], steps: Sequence[Mapping[str, Fraction]], on: int
+    ) -> bool:
+        """Appends a trajectory from a start, without rounding where that can be."""
+        each = (0, 256) if len(steps) <= FEW_STEPS else (256,)
+        witness = {"start": [str(start)]}
+        return any(self._course("path", {"bits": bits, **witness}, held, steps, on) for bits in each)
+
+    def _course(
+        self,
+        rule: str,
+        witness: dict[str, Any],
+        held: Mapping[str, Fraction],
+        steps: Sequence[Mapping[str, Fraction]],
+        on: int,
+    ) -> bool:
+        """Measures what the checker will see of a course and appends the line, if it holds."""
+        d = self.derivation
+        spans = course_variables(d)
+
+        def spelled(values: Mapping[str, Fraction]) -> dict[str, str]:
+            found = {}
+            for n, x in values.items():
+                if n in spans and spans[n].listed:
+                    ranks = [k for k, c in enumerate(spans[n].cells) if c[0] <= x <= c[1]]
+                    found[n] = f"#{ranks[0] if ranks else 0}"
+                elif n in spans:
+                    found[n] = str(min(max(x, spans[n].inside[0]), spans[n].inside[1]))
+            return found
+
+        witness |= {"held": spelled(held), "steps": [spelled(w) for w in steps]}
+        try:
+            course = Course(d, witness)
+            texts = [Fraction(t) for t in witness["start"]]
+            states = course.follow((texts[0], texts[-1]))
+            if rule == "orbit":
+                concludes = {
+                    "distance": downward(max(nearest(e) for e in course.errors(states[:-1]))),
+                    "highest": downward(max(x[0] for x in states[:-1])),
+                    "lowest": upward(min(x[1] for x in states[:-1])),
+                }
+            else:
+                first, last = course.errors([states[0], states[-1]])
+                far = upward(max(-first[0], first[1]))
+                concludes = {"distance": downward(nearest(last)), "from": far, "steps": str(len(steps))}
+            line = {"rule": rule, "proves": rule, "uses": [on], "witness": witness, "concludes": concludes}
+            self.proof.add(line)
+        except (Rejected, Undefined):
+            return False
+        self.raw.append(line)
+        return True
 
     def pruned(self, needed: set[int]) -> list[dict[str, Any]]:
         """The lines that later lines or results rest on, numbered anew."""

@@ -10,8 +10,10 @@ from functools import cached_property
 from ..checker.results import Results
 from ..claim import Claim
 from ..claim.constants import constant
-from ..claim.obligations import Obligations
+from ..claim.model import Requirement
+from ..claim.obligations import RANGED, Obligations
 
+NEARLY = Fraction(97, 100)  # share of a bound without attained end that a smaller gap may yet gain
 STOPS = {
     "cells": "stopped at the limit of cells",
     "seconds": "stopped at the limit of seconds",
@@ -38,6 +40,7 @@ class Remarks:
     results: Results
     search: Search
     enough: Callable[[], float | None]
+    explain: Callable[[Callable[[float, float], bool]], str]  # what costs how much, and what would do
 
     def all(self) -> list[tuple[str | None, bool]]:
         """A remark (or none) and whether to pursue, a requirement."""
@@ -55,7 +58,7 @@ class Remarks:
             parts.append("over sets a defined name free: its own expression is not used")
         pursue = False
         if outcome.verdict == "undecided":
-            ranged = r.kind in ("value", "sensitivity")
+            ranged = r.kind in RANGED
             names = [f"require[{number}]"] if ranged else [n for n in self.search.limits if not n.startswith("require")]
             parts += [f"{n}: {STOPS.get(x, x)}" for n in names if (x := self.search.limits.get(n, ""))]
             if self.search.interrupted:
@@ -69,17 +72,34 @@ class Remarks:
                 why = "gain is not below 1" if results.bound is None else "bound is not below the radius of the set"
                 parts.append(f"the {why}" + self.size_that_would_do)
             elif self.beyond(number):
+                untried = "the sector route is not tried yet" if r.kind == "gain" else "no orbit that far out was found"
                 parts.append(
-                    "this route cannot do better, as attained values show; that is no refutation, since "
-                    + (
-                        "routes that use `correction` are not tried yet"
-                        if r.kind == "gain"
-                        else "orbits are not searched"
-                    )
+                    f"this route cannot do better, as attained values show; that is no refutation, since {untried}"
                 )
+            elif r.kind == "steps":
+                parts.append("no proved sequence of steps is as short, and no path was found that takes longer")
+            elif r.kind == "push":
+                parts.append("the radius of the set less the bound is not above the constant")
             elif not parts or pursue:
                 parts.append("the constant lies between what is proved and what is attained")
-        return ("; ".join(parts)[:900] or None), pursue
+        if outcome.verdict != "proved" and not self.search.interrupted and not pursue:
+            parts.append(self.cost(r))
+        return ("; ".join(p for p in parts if p)[:900] or None), pursue
+
+    def cost(self, r: Requirement) -> str:
+        """Which uncertain quantities cost how much, for a requirement that slope and residual decide; an estimate."""
+        radius = self.results.radius.lower
+        if r.over or r.stance is not None or radius is None:
+            return ""
+        c = float(radius) if r.constant is None else float(constant(r.constant, self.claim.values)[0])
+        tests: dict[str, Callable[[float, float], bool]] = {
+            "settles": lambda k, e: k < 1 and e / (1 - k) < c,
+            "bound": lambda k, e: k < 1 and e / (1 - k) < c,
+            "sharp_bound": lambda k, e: k < 1 and e / (1 - k) < c,
+            "gain": lambda k, e: k < c,
+            "residual": lambda k, e: e < c,
+        }
+        return self.explain(tests[r.kind]) if r.kind in tests else ""
 
     def beyond(self, number: int) -> bool:
         """Whether attained values keep the slope route from ever proving an upper limit."""
@@ -93,10 +113,12 @@ class Remarks:
         results = self.results
         r, outcome = self.claim.requirements[number - 1], results.requirements[number - 1]
         k, e, radius = results.gain, results.residual, results.radius.lower
-        if r.kind in ("value", "sensitivity") and outcome.value is not None and outcome.attained is not None:
-            wanted = r.constant
+        if r.kind in RANGED and outcome.value is not None and outcome.attained is not None:
+            wanted = None if r.constant is None else constant(r.constant, self.claim.values)
+            if r.kind == "always":
+                wanted = (Fraction(0), Fraction(0))
             ends = [(outcome.attained.upper, outcome.value.upper), (outcome.value.lower, outcome.attained.lower)]
-            if wanted is not None and any(_between(constant(wanted, self.claim.values), *x) for x in ends):
+            if wanted is not None and any(_between(wanted, *x) for x in ends):
                 return True
         if k.lower is None or e.lower is None or radius is None:
             return False
@@ -104,11 +126,13 @@ class Remarks:
             return self.search.near_region or k.lower * radius + e.lower <= radius
         if r.kind == "settles" or (r.kind == "bound" and results.bound is None):
             return k.lower < 1 and e.lower < radius * (1 - k.lower)
-        span = {"gain": k, "residual": e, "bound": results.bound}.get(r.kind)
-        wanted = r.constant
-        if span is None or wanted is None:
+        bound = results.best if r.state else results.bound
+        spans = {"gain": k, "residual": e, "bound": bound, "sharp_bound": results.sharp}
+        span = spans.get(r.kind)
+        if span is None or r.constant is None or span.upper is None:
             return False
-        return _between(constant(wanted, self.claim.values), span.lower, span.upper)
+        lower = span.lower if span.lower is not None and r.state is None else span.upper * NEARLY
+        return _between(constant(r.constant, self.claim.values), lower, span.upper)
 
     @cached_property
     def size_that_would_do(self) -> str:

@@ -8,6 +8,7 @@ from typing import Any
 from ..checker.numerals import decimal_down, decimal_up
 from ..checker.results import Results, Span
 from ..claim import Claim
+from ..claim.obligations import RANGED
 
 DIGITS = 20
 
@@ -16,32 +17,36 @@ def assembled(claim: Claim, results: Results, remarks: list[tuple[str | None, bo
     """The entry as certificate-format states it; remarks say what limits each requirement."""
     s = results.state
     radius = written(results.radius) if results.settled else None
-    bound = written(results.bound)
-    pair = {"gain": written(results.gain), "residual": written(results.residual), "bound": bound}
     inside = {"kind": results.kind, "centre": {s: written(results.centre)}, "radius": radius}
+    routes = {n: paired(r.gain, r.residual, r.bound) for n, r in results.routes.items()}
+    sharp, push = written(results.sharp), written(results.push)
     requirements, bands = [], []
     for r, outcome, (remark, _) in zip(claim.requirements, results.requirements, remarks, strict=True):
         entry: dict[str, Any] = {
             "that": r.text, "verdict": outcome.verdict, "value": written(outcome.value), "limited_by": remark
         }  # fmt: skip
-        if r.kind in ("value", "sensitivity"):
+        if r.kind in RANGED:
             entry["attained"] = written(outcome.attained, inward=True)
         requirements.append(entry)
         if r.kind == "sensitivity" and not r.over and outcome.value is not None:
             bands.append({"of": r.state, "by": r.by, **(written(outcome.value) or {})})
     return {
         "set": inside if results.settled else None,
-        "route": "slope",
-        **pair,
-        "sharp_bound": None,
+        "route": results.reported,
+        **paired(results.gain, results.residual, results.bound),
+        "sharp_bound": sharp,
         "radius": radius,
-        "states": {s: {"bound": bound, "sharp_bound": None, "radius": radius, "push": None}},
-        "routes": {"slope": pair},
+        "states": {s: {"bound": written(results.best), "sharp_bound": sharp, "radius": radius, "push": push}},
+        "routes": routes,
         "metric": {"kind": "box", "weights": {s: "1"}},
         "sensitivities": bands,
         "gain_intervals": [],
         "requirements": requirements,
     }
+
+
+def paired(gain: Span, residual: Span, bound: Span | None) -> dict[str, Any]:
+    return {"gain": written(gain), "residual": written(residual), "bound": written(bound)}
 
 
 def written(span: Span | None, inward: bool = False) -> dict[str, str | None] | None:

@@ -15,7 +15,8 @@ from typing import Any
 from .derive import Derivation, Unprovable
 from .document import Unreadable, digest, read
 from .grammar import Refused
-from .results import Results, hold
+from .holding import hold
+from .results import Results
 from .rules import Proof, Rejected
 from .statement import read_statement
 

@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 import re
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from fractions import Fraction
 from itertools import pairwise
 from math import prod
@@ -14,6 +14,7 @@ from .ranges import Ends
 from .terms import Names, Terms, mentioned
 
 MOST_CELLS = 1_000_000
+RANGED = ("value", "sensitivity", "always")  # requirements that a range proves
 
 
 class Unprovable(Exception):
@@ -40,11 +41,13 @@ class Meaning:
 
 @dataclass(frozen=True)
 class Domain:
-    """The region, or the ball of `radius` about a target known to lie in `target`."""
+    """The region, or the ball of `radius` about a target known to lie in `target`; `radii`, `slope`: shells, a line."""
 
     ball: bool
     radius: Fraction
     target: Ends
+    radii: tuple[Fraction, ...] = ()
+    slope: Fraction = Fraction(0)
 
 
 class Derivation:
@@ -54,8 +57,8 @@ class Derivation:
         stance = statement.stances[0]
         if len(statement.stances) > 1 or stance.name or stance.dynamics is not None or len(stance.states) != 1:
             raise Unprovable("only closed-form claims of one state and one stance can be checked")
-        if statement.horizon != 1 or statement.shrink or statement.route not in ("best", "slope"):
-            raise Unprovable("only the slope route over one step can be checked")
+        if statement.horizon != 1 or statement.route == "sector":
+            raise Unprovable("only the routes slope, split and curve over one step can be checked")
         if any(set(constant(w, statement.values)) != {Fraction(1)} for w in statement.weights.values()):
             raise Unprovable("only the weight 1 can be checked for a single state")
         self.statement, self.stance, self.terms = statement, stance, Terms()
@@ -86,13 +89,63 @@ class Derivation:
         if name == f"slope[{s},{s}]":
             bound, given = self.through(domain, {})
             return self.over(self.names(bound, s).of(f"next({s})"), s, given, True)
+        if name in (f"split-slope[{s},{s}]", f"split-residual[{s}]") and self.statement.correction:
+            return self.split(domain, name.startswith("split-slope"))
+        shell = re.fullmatch(r"shell\[([1-9][0-9]{0,3})\]", name)
+        if shell and int(shell[1]) <= len(domain.radii):
+            return self.shell(domain, int(shell[1]))
+        if name == f"line[{s}]" and domain.radii:
+            return self.line(domain)
         number = re.fullmatch(r"require\[([1-9][0-9]{0,3})\]", name)
         if number and int(number[1]) <= len(self.statement.requirements):
             return self.required(self.statement.requirements[int(number[1]) - 1], domain)
         raise Unprovable(f"{name} is no obligation of this claim")
 
+    def split(self, domain: Domain, slope: bool) -> Meaning:
+        """proofs/split.md: the slope of x + F − N, or N − x + F(x*) − N(x*), N without the correction."""
+        s, put = self.state, self.terms.put
+        bound, given = self.through(domain, {})
+        without = dict.fromkeys(self.statement.correction, put("number", (), Fraction(0)))
+
+        def part(bound: dict[str, int], name: str, cut: str = "") -> int:
+            return self.names(bound, cut).of(name)
+
+        step = f"next({s})"
+        if slope:
+            change = self.terms.difference(part(bound, step, s), part({**bound, **without}, step, s))
+            return self.over(put("add", (part(bound, s, s), change)), s, given, True)
+        at = {s: part({}, f"target({s})")}
+        kept = put("sub", (part({**bound, **without}, step), part(bound, s)))
+        shift = self.terms.difference(part(at, step), part({**at, **without}, step))
+        return self.over(put("add", (kept, shift)), "", given, True)
+
+    def line(self, domain: Domain) -> Meaning:
+        """proofs/curve.md (2): |F − x*| − k|x − x*| over the set."""
+        put, s = self.terms.put, self.state
+        bound, given = self.through(domain, {})
+        names = self.names(bound)
+        target = names.of(f"target({s})")
+        far, error = (put("abs", (put("sub", (names.of(x), target)),)) for x in (f"next({s})", s))
+        above = put("mul", (put("number", (), domain.slope), error))
+        return self.over(put("sub", (far, above)), "", given, True)
+
+    def shell(self, domain: Domain, j: int) -> Meaning:
+        """proofs/curve.md (1): F − x* where the error is between two radii, the region kept to."""
+        s, put, error = self.state, self.terms.put, f"error({self.state})"
+        inner, outer = domain.radii[j - 2] if j > 1 else Fraction(0), domain.radii[j - 1]
+        target = self.names().of(f"target({s})")
+        x = put("add", (target, put("variable", (), error)))
+        if not domain.ball:
+            low, high = (put("number", (), q) for q in self.region()[0])
+            x = put("min", (put("max", (x, low)), high))
+        root = put("sub", (self.names({s: x}).of(f"next({s})"), target))
+        meaning = self.over(root, "", {error: ((-outer, outer),) * 2}, True)
+        cells = (-outer, -inner), (inner, outer)
+        variables = [replace(v, cells=cells) if v.name == error else v for v in meaning.variables]
+        return replace(meaning, variables=variables)
+
     def required(self, r: Requirement, domain: Domain) -> Meaning:
-        if r.kind not in ("value", "sensitivity") or r.stance is not None:
+        if r.kind not in RANGED or r.stance is not None:
             raise Unprovable(f"{r.text!r} is not proved by a range")
         folded, ends = self.folded(r)
         if r.by in folded or set(r.over) & (folded | ends):
@@ -101,7 +154,10 @@ class Derivation:
             )
         bound, given = self.through(domain, r.over)
         names = self.names(bound, r.by or "")
-        root = names.expression(r.expression) if r.expression is not None else names.of(f"next({r.state})")
+        if r.left is not None and r.right is not None:
+            root = self.terms.put("sub", (names.expression(r.left), names.expression(r.right)))
+        else:
+            root = names.expression(r.expression) if r.expression is not None else names.of(f"next({r.state})")
         met = self.terms.variables(root)
         on_set = self.state not in r.over and (self.state in met or f"error({self.state})" in met)
         return self.over(root, r.by or "", given, on_set)
@@ -110,9 +166,8 @@ class Derivation:
         """Constants and gains that exponents rest on, and that ranges rest on: both are taken at their values."""
         s, fixed = self.stance, {**self.statement.constants, **self.statement.gains}
         texts = [*fixed.values(), *s.define.values(), *s.next.values(), *s.target.values()]
-        texts += [e for library in self.statement.libraries for e in library.at] + (
-            [r.expression] if r.expression else []
-        )
+        texts += [e for library in self.statement.libraries for e in library.at]
+        texts += [e for e in (r.expression, r.left, r.right) if e is not None]
         quantities = [*s.states.values(), *self.statement.uncertain.values()]
         ranges = [e for q in quantities if q.range for e in (q.range.lower, q.range.upper)]
         ranges += [e for q in quantities for e in (*(q.values or ()), *([q.change] if q.change else ()))]

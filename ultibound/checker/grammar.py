@@ -1,60 +1,97 @@
-"""Expressions of claims: a bounded parser into flat nodes, and the value of constant expressions."""
+"""Expressions of claims: a bounded parser into flat nodes, and the value of constant expressions.
+
+The rule, which the search's own reader keeps too. A rational value is exact, of at most 2**17 bits above the line and
+as many below. Any other lies between two whole multiples of 2**-160; it, every operand of the operation that gives
+it and every step on the way are at most 2**20000 in magnitude: the power a negative power is the reciprocal of, the
+exponential sinh and cosh are made of, the points of a curve. What passes a limit is refused. `min`, `max`, `clip` and
+`abs` choose among the ends of their operands and round nothing; `bezier` is always worked out on the grid.
+"""
 
 from __future__ import annotations
 
+import operator
 import re
-from collections.abc import Iterable, Mapping
+from collections.abc import Callable, Iterator, Mapping
+from contextlib import contextmanager
 from dataclasses import dataclass
-from difflib import get_close_matches
 from fractions import Fraction
 from itertools import pairwise
 from math import isqrt
-from typing import cast
+from typing import Any, cast
 
-from .numerals import spelled
+from .numerals import Number, spelled
+from .numerals import Refused as Refused  # others take it from here
 from .reals import Interval, Scaled, Undefined
 
-LONGEST, DEEPEST, BITS, FOLDED, WORK = 10_000, 64, 160, 2**17, 2**20
-UNARY = frozenset(["sqrt", "exp", "log", "sin", "cos", "tan", "asin", "acos", "atan", "sinh", "cosh", "tanh", "abs"])
-ARGUMENTS = {**dict.fromkeys(UNARY, (1, 1)), "min": (2, 9999), "max": (2, 9999), "clip": (3, 3), "bezier": (2, 9999)}
-FUNCTIONS = frozenset({*ARGUMENTS, "dt", "target"})
-WORDS = "settles gain residual bound sharp_bound radius push steps sensitivity value always throughout next during"
-RESERVED = FUNCTIONS | {"t", "pi", *WORDS.split()}
-AT_ZERO = {
-    **dict.fromkeys(("sin", "tan", "asin", "atan", "sinh", "tanh"), 0),
-    **dict.fromkeys(("cos", "exp", "cosh"), 1),
+LONGEST, DEEPEST, BITS, FOLDED = 10_000, 64, 160, 2**17
+WORK = 2**20  # about a second
+SHARE = 2**12  # of a requirement's own constants, each: there may be a thousand requirements
+SMOOTH = ("sqrt", "exp", "log", "sin", "cos", "tan", "asin", "acos", "atan", "sinh", "cosh", "tanh")
+ARGUMENTS = {
+    **dict.fromkeys((*SMOOTH, "abs", "dt"), (1, 1)),
+    **dict.fromkeys(("min", "max", "bezier"), (2, LONGEST)),
+    "clip": (3, 3),
 }
+WORDS = "settles gain residual bound sharp_bound radius push steps sensitivity value always throughout next during"
+RESERVED = {*ARGUMENTS, "target", "t", "pi", *WORDS.split()}
 NAME = re.compile(r"[A-Za-z][A-Za-z0-9_]{0,39}", re.ASCII)
 TOKEN = re.compile(
     r"[ \t\r\n]+|(?P<number>[0-9][0-9A-Za-z_.]*(?:(?<=e)-[0-9]+)?)|(?P<name>[A-Za-z_][A-Za-z0-9_]*)"
-    r"|(?P<mark>\*\*|<=|>=|[-+*/(),<>])",
-    re.ASCII,
+    r"|(?P<mark>\*\*|<=|>=|[-+*/(),<>])|(?P<odd>.)",
+    re.ASCII | re.DOTALL,
 )
-EASY = frozenset(["add", "sub", "mul", "div", "neg", "abs", "min", "max", "clip", "power", "sqrt", "pi"])
+CHOICES: dict[str, Callable[..., Fraction]] = {"min": min, "max": max, "clip": lambda x, a, b: min(max(x, a), b)}
+RATIONAL: dict[str, Callable[..., Fraction]] = {
+    **{name: getattr(operator, name) for name in ("add", "sub", "mul", "neg", "abs")},
+    "div": operator.truediv,
+    **CHOICES,
+}
+POINTS: dict[tuple[str, Fraction | int], int] = {  # where functions are rational
+    **{(f, 0): 0 for f in ("sin", "tan", "asin", "atan", "sinh", "tanh")},
+    **{(f, 0): 1 for f in ("cos", "exp", "cosh")},
+    **{(f, 1): 0 for f in ("log", "acos")},
+}
+RISING = frozenset(["exp", "log", "sin", "tan", "asin", "atan", "sinh", "tanh"])  # sine and tangent up to 3/2
 Ends = tuple[Fraction, Fraction]
 
 
-class Refused(Exception):
-    """A claim outside the format: the place, the rule and what was found, short and printable whatever was found."""
+@contextmanager
+def at(place: str) -> Iterator[None]:
+    """Puts the place before what is refused inside."""
+    try:
+        yield
+    except Refused as why:
+        raise Refused(f"{place}: {why}") from None
 
-    def __str__(self) -> str:
-        text = super().__str__()
-        text = text if len(text) <= 400 else f"{text[:200]} … {text[-200:]}"
-        return "".join(c if c.isprintable() else "\ufffd" for c in text)
+
+def size(q: Fraction) -> int:
+    """Bits of the longer of numerator and denominator."""
+    return max(q.numerator.bit_length(), q.denominator.bit_length())
 
 
-class Known(dict[str, Ends]):
-    """Values of constants and gains, and the work reading a claim may still take: none stalls the checker."""
+def kilobits(ends: Ends) -> int:
+    """Of a value on the grid."""
+    return (int(max(-ends[0], ends[1])).bit_length() + BITS) >> 10
 
-    left = WORK
 
-    def spend(self, q: Fraction, times: int = 1) -> None:
-        self.take((max(q.numerator.bit_length(), q.denominator.bit_length()) >> 10) ** 2 * times)
+class Work:
+    """What working out constants may still cost: none stalls the checker, and the search's reader counts alike.
 
-    def take(self, work: int) -> None:
-        self.left -= work
+    A number, a name or a result costs the square of the whole kilobits it takes. In `constant` an operation costs 16
+    more; a function 32, and 512 times the square of the kilobits its operand or result takes on the grid; a curve the
+    square of its points, times one more than the square of the kilobits its operands take there.
+    """
+
+    def __init__(self, left: int) -> None:
+        self.left = left
+
+    def take(self, cost: int) -> None:
+        self.left -= cost
         if self.left < 0:
             raise Refused("the numbers of this claim are too long to be worked out; shorten them")
+
+    def spend(self, ends: Ends) -> None:
+        self.take((size(ends[0]) >> 10 if ends[0] == ends[1] else kilobits(ends)) ** 2)
 
 
 @dataclass(frozen=True)
@@ -71,27 +108,41 @@ class Expression:
     nodes: tuple[Node, ...]
 
 
-def tokens(text: str) -> list[str]:
-    if len(text) > LONGEST:
-        raise Refused(f"an expression of {len(text)} characters; at most {LONGEST}")
-    found, at = [], 0
-    while at < len(text):
-        match = TOKEN.match(text, at)
-        if match is None:
-            raise Refused(f"{text[at : at + 20]!r} at character {at + 1}")
-        if match.lastgroup:
-            found.append(match[0])
-        at = match.end()
-    return found
+class Known(dict[str, Ends]):
+    """Values of constants and gains, the work their claim may still take, and expressions worked out already."""
+
+    def __init__(self, values: Mapping[str, Ends]) -> None:
+        super().__init__(values)
+        self.work, self.arithmetic = Work(WORK), Scaled(BITS)
+        self.done: dict[int, tuple[Expression, Ends]] = {}  # by identity, held so that it stays theirs
+
+
+def known(values: Mapping[str, Ends]) -> Known:
+    return values if isinstance(values, Known) else Known(values)
+
+
+def number(text: str) -> Fraction:
+    """The number a claim spells, exactly. Raises Refused."""
+    value = spelled(text)
+    if value is None:
+        raise Refused(f"{text[:40]!r} is no number of the claim format")
+    return value
 
 
 class Parser:
     """Recursive descent with a depth count. `values` are the constants and gains an exponent may use."""
 
     def __init__(self, text: str, values: Mapping[str, Ends], steps: bool = False) -> None:
+        if len(text) > LONGEST:
+            raise Refused(f"an expression of {len(text)} characters; at most {LONGEST}")
         self.text, self.values, self.steps = text, known(values), steps
-        self.left, self.at, self.depth = tokens(text), 0, 0
+        self.left, self.at, self.depth = list[str](), 0, 0
         self.nodes: list[Node] = []
+        for match in TOKEN.finditer(text):
+            if match["odd"]:
+                raise Refused(f"{match[0]!r} at character {match.start() + 1}")
+            if match.lastgroup:
+                self.left.append(match[0])
 
     def peek(self) -> str:
         return self.left[self.at] if self.at < len(self.left) else ""
@@ -102,6 +153,23 @@ class Parser:
             raise Refused(f"{wanted or 'more'!r} expected, {token or 'the end'!r:.40} found in {self.text[:60]!r}")
         self.at += 1
         return token
+
+    def word(self) -> str:
+        name = self.take()
+        if not NAME.fullmatch(name):
+            raise Refused(f"{name[:60]!r}: a name is expected")
+        return name
+
+    def ended(self) -> None:
+        if self.peek():
+            raise Refused(f"{self.peek()[:40]!r} is left over in {self.text[:60]!r}")
+
+    def expression(self, work: Work) -> Expression:
+        """One expression from here on, its parts of numbers alone looked at."""
+        self.nodes = []
+        self.sum()
+        checked(self.nodes, work)
+        return Expression(self.text, tuple(self.nodes))
 
     def put(self, op: str, args: tuple[int, ...] = (), value: Fraction | None = None, name: str | None = None) -> int:
         self.nodes.append(Node(op, args, value, name))
@@ -141,16 +209,14 @@ class Parser:
             return base
         self.take()
         self.deeper()
-        start = len(self.nodes)
-        root = self.signed()
+        kept, self.nodes = self.nodes, []
+        self.signed()
+        raised, self.nodes = tuple(self.nodes), kept
         self.depth -= 1
-        shifted = [Node(n.op, tuple(a - start for a in n.args), n.value, n.name) for n in self.nodes[start : root + 1]]
-        del self.nodes[start:]
-        low, high = constant(Expression(self.text, tuple(shifted)), self.values)
+        low, high = constant(Expression(self.text, raised), self.values)
         if low != high or low.denominator > 2 or abs(low) > 64:
             raise Refused(f"an exponent in {self.text[:60]!r} is no integer or half-integer of at most 64")
-        inside = " ".join(n.name for n in shifted if n.op == "name" and n.name)
-        return self.put("power", (base,), low, inside or None)
+        return self.put("power", (base,), low, " ".join(str(n.name) for n in raised if n.op == "name") or None)
 
     def atom(self) -> int:
         token = self.take()
@@ -161,14 +227,7 @@ class Parser:
             self.depth -= 1
             return inner
         if token[0].isdigit():
-            try:
-                value = spelled(token)
-            except ValueError as why:
-                raise Refused(str(why)) from None
-            if value is None:
-                raise Refused(f"{token[:40]!r} is no number")
-            self.values.spend(value)
-            return self.put("number", (), value)
+            return self.put("number", (), number(token))
         if token == "pi":
             return self.put("pi")
         if token == "t":
@@ -182,99 +241,60 @@ class Parser:
     def call(self, name: str) -> int:
         self.take("(")
         self.deeper()
+        state, args = None, list[int]()
         if name == "target" or (name == "next" and self.steps):
-            state = self.take()
-            self.take(")")
-            self.depth -= 1
-            if not NAME.fullmatch(state):
-                raise Refused(f"{name}({state[:40]}): a state is expected")
-            return self.put(name, (), None, state)
-        if name not in ARGUMENTS and name != "dt":
-            raise Refused(f"{name[:60]!r} is no function{nearest(name, FUNCTIONS)}")
-        args = [self.sum()]
-        while self.peek() == ",":
-            self.take()
-            args.append(self.sum())
+            state = self.word()
+        elif name in ARGUMENTS:
+            args = [self.sum()]
+            while self.peek() == ",":
+                self.take()
+                args.append(self.sum())
+            least, most = ARGUMENTS[name]
+            if not least <= len(args) <= most:
+                raise Refused(f"{name} takes {least} argument(s), {len(args)} found")
+        else:
+            raise Refused(f"{name[:60]!r} is no function")
         self.take(")")
         self.depth -= 1
-        least, most = ARGUMENTS.get(name, (1, 1))
-        if not least <= len(args) <= most:
-            raise Refused(f"{name} takes {least} argument(s), {len(args)} found")
-        return self.put(name, tuple(args))
-
-    def whole(self) -> Expression:
-        """The expression up to where the parser stands."""
-        return Expression(self.text, tuple(self.nodes))
-
-    def ended(self) -> None:
-        if self.at < len(self.left):
-            raise Refused(f"{self.peek()[:40]!r} is left over in {self.text[:60]!r}")
+        return self.put(name, tuple(args), None, state)
 
 
-def parse(text: str, values: Mapping[str, Ends], steps: bool = False) -> Expression:
-    parser = Parser(text, values, steps)
-    parser.sum()
+def parse(value: Any, values: Mapping[str, Ends]) -> Expression:
+    """An expression, or a number that stands for one."""
+    given = known(values)
+    if type(value) in (int, Number):
+        q = number(str(value))
+        given.work.spend((q, q))
+        return Expression(str(value), (Node("number", (), q),))
+    if type(value) is not str:
+        raise Refused("an expression is expected")
+    parser = Parser(value, given)
+    e = parser.expression(given.work)
     parser.ended()
-    checked(parser.nodes, parser.values)
-    return parser.whole()
+    return e
 
 
-def nearest(name: str, among: Iterable[str]) -> str:
-    """A hint for messages: the name most like it, if any is."""
-    close = get_close_matches(name[:40], sorted(among)[:2000], 1)
-    return f"; did you mean {close[0]}?" if close else ""
-
-
-def names(e: Expression) -> list[str]:
-    """Declared names an expression uses."""
-    return [str(n.name) for n in e.nodes if n.op == "name"]
-
-
-def known(values: Mapping[str, Ends]) -> Known:
-    return values if isinstance(values, Known) else Known(values)
-
-
-def checked(nodes: list[Node], values: Known) -> None:
+def checked(nodes: list[Node], work: Work) -> None:
     """Refuses constant parts whose exact value is too long, or that divide by zero."""
     found: list[Fraction | None] = []
     for n in nodes:
         given = [q for a in n.args if (q := found[a]) is not None]
-        found.append(n.value if n.op == "number" else None)
-        if n.args and len(given) == len(n.args):
-            found[-1] = value = exact(n, given)
-            if value is not None:
-                values.spend(value)
+        value = exact(n, given) if n.args and len(given) == len(n.args) else n.value if n.op == "number" else None
+        if value is not None:
+            work.spend((value, value))
+        found.append(value)
 
 
 def exact(n: Node, given: list[Fraction]) -> Fraction | None:
     """Rational value of an operation on rationals, None where it is not rational."""
-    a, b = given[0], given[-1]
-    result = None
-    if n.op == "add":
-        result = a + b
-    elif n.op == "sub":
-        result = a - b
-    elif n.op == "neg":
-        result = -a
-    elif n.op == "mul":
-        result = a * b
-    elif n.op == "div":
-        if b == 0:
-            raise Refused("division by zero")
-        result = a / b
-    elif n.op == "power" and n.value is not None:
-        return powered(a, n.value)
-    elif n.op == "sqrt":
-        return root(a)
-    elif n.op == "abs":
-        result = abs(a)
-    elif n.op == "min":
-        result = min(given)
-    elif n.op == "max":
-        result = max(given)
-    elif n.op == "clip":
-        result = min(max(a, given[1]), b)
-    if result is not None and max(result.numerator.bit_length(), result.denominator.bit_length()) > FOLDED:
+    if n.op == "power" and n.value is not None:
+        return powered(given[0], n.value)
+    if n.op == "sqrt":
+        return root(given[0])
+    if n.op == "div" and given[1] == 0:
+        raise Refused("division by zero")
+    result = RATIONAL[n.op](*given) if n.op in RATIONAL else None
+    if result is not None and size(result) > FOLDED:
         raise Refused("a constant part whose exact value is too long")
     return result
 
@@ -285,7 +305,7 @@ def powered(a: Fraction, p: Fraction) -> Fraction | None:
         return None if half is None else powered(half, 2 * p)
     if a == 0 and p < 0:
         raise Refused("division by zero")
-    if max(a.numerator.bit_length(), a.denominator.bit_length()) * abs(p) > FOLDED:
+    if size(a) * abs(p) > FOLDED:
         raise Refused("a constant part whose exact value is too long")
     return a ** int(p)
 
@@ -297,32 +317,59 @@ def root(a: Fraction) -> Fraction | None:
     return Fraction(top, low) if top * top == a.numerator and low * low == a.denominator else None
 
 
-def constant(e: Expression, values: Mapping[str, Ends]) -> Ends:
+def constant(e: Expression, values: Mapping[str, Ends], work: Work | None = None) -> Ends:
     """Enclosure of a constant expression, of equal ends where it is exact. Raises Refused where it has no value."""
-    arithmetic, values = Scaled(BITS), known(values)
-    done: list[Ends] = []
+    given = known(values)
+    work = work or given.work
+    if id(e) in given.done:
+        return given.done[id(e)][1]
+    found: list[Ends] = []
     for n in e.nodes:
-        args = [done[a] for a in n.args]
+        args = [found[a] for a in n.args]
         if n.op == "number" and n.value is not None:
-            done.append((n.value, n.value))
-        elif n.op == "name" and n.name in values:
-            done.append(values[str(n.name)])
-        elif n.op == "name" or n.op in ("time", "target", "next", "dt"):
+            found.append((n.value, n.value))
+        elif n.op == "name" and n.name in given:
+            found.append(given[str(n.name)])
+        elif n.op in ("name", "time", "target", "next", "dt"):
             raise Refused(f"{n.name or n.op!r} is no constant")
         else:
+            hard = n.op in SMOOTH and n.op != "sqrt"
+            work.take(32 if hard else 16)
             if n.op == "bezier":
-                values.take(len(args) ** 2)
-            done.append(evaluated(n, args, arithmetic))
-            hard = 1 if n.op in EASY else 512  # a function takes about as long as so many products
-            for q in (done[-1][1], *(e[1] for e in args if hard > 1)):
-                values.spend(q, hard)
-    return done[-1]
+                work.take(len(args) ** 2 * (1 + max(map(kilobits, args)) ** 2))
+            found.append(evaluated(n, args, given.arithmetic))
+            if hard:
+                work.take(512 * max(map(kilobits, (*args, found[-1]))) ** 2)
+        work.spend(found[-1])
+    given.done[id(e)] = e, found[-1]
+    return found[-1]
+
+
+def evaluated(n: Node, args: list[Ends], a: Scaled) -> Ends:
+    lows, highs = [e[0] for e in args], [e[1] for e in args]
+    if args and lows == highs:
+        value = exact(n, lows)
+        if value is None and (n.op, lows[0]) in POINTS:
+            value = Fraction(POINTS[n.op, lows[0]])
+        if value is not None:
+            return value, value
+    if n.op == "abs":
+        return max(lows[0], -highs[0], Fraction(0)), max(-lows[0], highs[0])
+    if n.op in CHOICES:
+        return CHOICES[n.op](*lows), CHOICES[n.op](*highs)
+    try:
+        x = [a.between(*e) for e in args]
+        found = a.ends(enclosed(n, x, a))
+    except Undefined as why:
+        raise Refused(f"a constant expression: {why}") from None
+    if n.op not in RISING or max(-lows[0], highs[0]) > Fraction(3, 2):
+        return found
+    low, high = (POINTS.get((n.op, end)) for end in a.ends(x[0]))  # rational there: not rounded outward
+    return found[0] if low is None else Fraction(low), found[1] if high is None else Fraction(high)
 
 
 def enclosed(n: Node, x: list[Interval], a: Scaled) -> Interval:
     """An operation in outward-rounded arithmetic. Raises Undefined."""
-    if n.op == "pi":
-        return a.pi()
     if n.op == "power" and n.value is not None:
         base = a.sqrt(x[0]) if n.value.denominator == 2 else x[0]
         p = int(n.value * n.value.denominator)
@@ -333,29 +380,4 @@ def enclosed(n: Node, x: list[Interval], a: Scaled) -> Interval:
         while len(points) > 1:  # de Casteljau
             points = [a.add(p, a.mul(x[0], a.sub(q, p))) for p, q in pairwise(points)]
         return points[0]
-    operation = {"add": a.add, "sub": a.sub, "mul": a.mul, "div": a.div}.get(n.op) or getattr(a, n.op)
-    return cast(Interval, operation(*x))
-
-
-def evaluated(n: Node, args: list[Ends], a: Scaled) -> Ends:
-    if args and all(low == high for low, high in args):
-        value = exact(n, [low for low, _ in args])
-        if value is None and args[0][0] == 0 and n.op in AT_ZERO:
-            value = Fraction(AT_ZERO[n.op])
-        if value is None and args[0][0] == 1 and n.op in ("log", "acos"):
-            value = Fraction(0)
-        if value is not None:
-            return value, value
-    if n.op == "abs":
-        low, high = args[0]
-        return (low, high) if low >= 0 else (-high, -low) if high <= 0 else (Fraction(0), max(-low, high))
-    if n.op in ("min", "max"):
-        pick = min if n.op == "min" else max
-        return pick(e[0] for e in args), pick(e[1] for e in args)
-    if n.op == "clip":
-        (low, high), lower, upper = args
-        return min(max(low, lower[0]), upper[0]), min(max(high, lower[1]), upper[1])
-    try:
-        return a.ends(a.between(*a.ends(enclosed(n, [a.between(*e) for e in args], a))))
-    except Undefined as why:
-        raise Refused(f"a constant expression: {why}") from None
+    return cast(Interval, getattr(a, n.op)(*x))

@@ -6,7 +6,6 @@ from dataclasses import dataclass, field
 from fractions import Fraction
 
 from .grammar import Ends, Expression
-from .library import Library
 
 
 @dataclass(frozen=True)
@@ -24,6 +23,15 @@ class Quantity:
     held: bool
     change: Expression | None
     within: bool
+
+
+@dataclass(frozen=True)
+class Library:
+    file: str
+    axes: tuple[str, ...]
+    at: tuple[Expression, ...]
+    grid: tuple[tuple[Fraction, ...], ...]
+    columns: dict[str, tuple[Fraction, ...]]
 
 
 @dataclass(frozen=True)

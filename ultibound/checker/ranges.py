@@ -13,7 +13,7 @@ from math import prod
 from typing import Any
 
 from .exact import Exact
-from .library import Library
+from .model import Library
 from .numerals import decimal_down, decimal_up
 from .reals import Undefined
 from .terms import Terms
@@ -126,9 +126,9 @@ class Evaluator:
         if op == "power" and isinstance(payload, Fraction):
             return self.chain(first, "power", int(payload))
         if op == "abs":
-            return self.corner(k, first, self.linear(a.neg(first.v), first, None), 1, floor=True)
+            return self.corner(k, first, self.linear(a.neg(first.v), first, None), 1, box, floor=True)
         if op == "max" or op == "min":
-            return self.corner(k, first, jets[args[1]], 1 if op == "max" else -1)
+            return self.corner(k, first, jets[args[1]], 1 if op == "max" else -1, box)
         if op == "reading":
             return self.reading(k, str(payload), args, [jets[x] for x in args], box)
         if op in SMOOTH:
@@ -206,13 +206,15 @@ class Evaluator:
                 jet.dg[i] = twice
         return jet
 
-    def corner(self, k: int, x: Jet, y: Jet, side: int, floor: bool = False) -> Jet:
+    def corner(self, k: int, x: Jet, y: Jet, side: int, box: Box, floor: bool = False) -> Jet:
         """The larger (side 1) or smaller of two terms; slopes are hulls of the branches met (proofs/corners.md)."""
         (p, q), (r, s) = x.v, y.v
-        met = (q >= r, s >= p) if side > 0 else (p <= s, r <= q)  # a tie counts for both
         if k in self.chosen:
             return (x, y)[self.chosen[k]]
+        met = (q >= r, s >= p) if side > 0 else (p <= s, r <= q)  # a tie counts for both
         self.sides[k] = tuple(i for i in (0, 1) if met[i])
+        if all(met) and not self.by and not self.touching:
+            self.sides[k] = self.taken(k, x, y, side, box)
         if len(self.sides[k]) == 1:
             return (x, y)[self.sides[k][0]]
         pick = max if side > 0 else min
@@ -221,6 +223,14 @@ class Evaluator:
         for i in x.g | y.g:
             jet.g[i] = self.hull(x.g.get(i), y.g.get(i))
         return jet
+
+    def taken(self, k: int, x: Jet, y: Jet, side: int, box: Box) -> tuple[int, ...]:
+        """Of a value: one branch alone where it is never passed, a tie included; by exact ends where rational."""
+        args = self.all[k][1]
+        p, q = self.exact(args[0], x, box)
+        r, s = self.exact(args[1], y, box) if len(args) > 1 else (-q, -p)
+        first, second = (p >= s, r >= q) if side > 0 else (q <= r, s <= p)
+        return (0,) if first else (1,) if second else (0, 1)
 
     def hull(self, p: Interval, q: Interval) -> Interval:
         if p is None and q is None:
@@ -312,6 +322,8 @@ class Evaluator:
             rational = all(self.all[x][0] in RATIONAL for x in self.terms.below(k))
             self.axes[k] = Evaluator(self.terms, k, "", self.names, (), Exact()) if rational else None
         axis = self.axes[k]
+        if axis is not None:
+            axis.chosen = self.chosen
         low, high = self.a.ends(jet.v) if axis is None else axis.run(box, False).v
         return low, high
 
@@ -364,19 +376,24 @@ def enclose(evaluator: Evaluator, box: Box, form: str) -> Interval:
         raise Undefined(f"unknown form {form!r}")
     if form == "d":
         return low, high
-    if not evaluator.by:
-        return smooth(evaluator, box, form, jet)
     sides = dict(evaluator.sides)
-    several = prod(map(len, sides.values())) > 1
-    if evaluator.several or prod(map(len, sides.values())) > MOST_BRANCHES:
+    count = prod(map(len, sides.values()))
+    if not evaluator.by:  # a value: piecewise smooth all over, whatever branches are met
+        low, high = smooth(evaluator, box, form, jet)
+        if count == 1:
+            return low, high
+    if (evaluator.by and evaluator.several) or count > MOST_BRANCHES:
         return low, high  # a derivative that may jump has no other form
     parts = []  # branch by branch, each smooth over the whole box: proofs/corners.md (3)
     try:
         for choice in product(*sides.values()):
             evaluator.chosen = dict(zip(sides, choice, strict=True))
-            parts.append(smooth(evaluator, box, form, evaluator.run(box, True) if several else jet))
+            branch = evaluator.run(box, True) if count > 1 else jet
+            if evaluator.by and evaluator.several:  # a branch may read cells that the term itself does not
+                return low, high
+            parts.append(smooth(evaluator, box, form, branch))
     except Undefined:  # a branch is not defined where it is not taken
-        if several:
+        if count > 1:
             return low, high
         raise
     finally:

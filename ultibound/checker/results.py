@@ -1,4 +1,4 @@
-"""What the lines of a proof amount to: quantities and verdicts, derived afresh and held against the claimed ones."""
+"""What the lines of a proof amount to: quantities and verdicts, derived afresh from the lines alone."""
 
 from __future__ import annotations
 
@@ -6,12 +6,14 @@ from dataclasses import dataclass
 from fractions import Fraction
 from typing import Any
 
+from .derive import RANGED
 from .grammar import constant
-from .rules import Line, Proof, Rejected, quantity
+from .rules import Line, Proof, Rejected
+from .theorems import PAIRS, levels, movement
 
-DIGITS = 20
-REMARK = 1000
 SLACK = Fraction(1, 10**6)  # share by which the largest ball may be missed where the target is known to a gap only
+MOST_STEPS = 20_000
+LONG, GRAIN = 2000, 2**160  # bits of a denominator beyond which levels are rounded up, and to what
 
 
 @dataclass(frozen=True)
@@ -22,6 +24,9 @@ class Span:
     upper: Fraction | None
 
 
+NOTHING = Span(None, None)
+
+
 @dataclass(frozen=True)
 class Outcome:
     verdict: str
@@ -29,43 +34,56 @@ class Outcome:
     attained: Span | None = None
 
 
+@dataclass(frozen=True)
+class Route:
+    """Gain, residual and bound that belong together: one set, one argument."""
+
+    gain: Span = NOTHING
+    residual: Span = NOTHING
+    bound: Span | None = None
+
+
 class Results:
     """Everything `results` may claim; `needed` collects the lines it rests on."""
 
     def __init__(self, proof: Proof) -> None:
         self.proof, self.derivation, self.needed = proof, proof.derivation, set[int]()
-        self.statement, s = proof.derivation.statement, proof.derivation.state
-        self.state = s
-        pair, ball = self.one("slope", "slope"), self.one("largest-ball", "ball")
+        self.statement, self.state = proof.derivation.statement, proof.derivation.state
+        ball = self.one("largest-ball", "ball")
         if ball is None:
             raise Rejected("the proof has no ball about the target")
         invariant = self.one("invariant-region", "invariant") or self.one("invariant-ball", "invariant")
         self.domain = invariant.domain if invariant is not None else ball.domain
         self.settled = invariant is not None
-        self.kind = None if invariant is None else "region" if invariant.rule == "invariant-region" else "ball"
-        bounded = self.one("ultimate-bound", "bound")
-        if pair is not None and pair.domain != self.domain:
-            raise Rejected("gain and residual refer to another set")
         centre = proof.lines[ball.uses[0]].concludes
-        self.centre = Span(centre["lower"], centre["upper"])
-        self.radius = Span(ball.concludes["radius"], self.reach() if self.settled else None)
-        near = (
-            self.radius.upper is not None and self.radius.upper - ball.concludes["radius"] <= SLACK * self.radius.upper
-        )
-        self.whole = self.kind == "region" or (
-            self.settled and self.escapes() and near and ball.concludes["radius"] > 0
-        )
-        self.gain = self.residual = Span(None, None)
-        self.bound: Span | None = None
-        if pair is not None:
-            least = self.moved_at_least(far(self.attained(f"target-miss[{s}]")))
-            self.gain = Span(far(self.attained(f"slope[{s},{s}]")), pair.concludes["gain"])
-            self.residual = Span(least, pair.concludes["residual"])
-            if bounded is not None:
-                k = self.gain.lower
-                lower = None if k is None or least is None or k >= 1 else least / (1 - k)
-                self.bound = Span(lower, bounded.concludes["bound"])
+        asked = self.settled or any(r.kind == "radius" for r in self.statement.requirements)
+        self.centre, self.edge = Span(centre["lower"], centre["upper"]), self.reach() if asked else None
+        self.radius = Span(ball.concludes["radius"], self.edge)
+        self.kind, self.whole = self.set_found(invariant)
+        orbit = self.one("orbit", "orbit")
+        self.orbit = orbit.concludes["distance"] if orbit is not None else None
+        self.room = self.room_left(orbit)
+        self.missed = self.moved_at_least(far(self.attained(f"target-miss[{self.state}]")))
+        self.routes = {name: self.route(name) for name in PAIRS if self.one(name, name) is not None}
+        self.reported = self.chosen()
+        route = self.routes.get(self.reported, Route())
+        self.residual, self.bound = route.residual, route.bound
+        self.gain = self.contraction() if self.reported == "curve" else route.gain
+        self.best = self.sharp = self.least_bound()
+        self.push = self.pushed()
         self.requirements = [self.required(n, r) for n, r in enumerate(self.statement.requirements, 1)]
+
+    def set_found(self, invariant: Line | None) -> tuple[str | None, bool]:
+        """Its kind, and whether requirements may refer to it: proofs/invariant-set.md (4)."""
+        if invariant is None:
+            return None, False
+        if invariant.rule == "invariant-region":
+            return "region", True
+        r, most = self.radius.lower, self.radius.upper
+        largest = r is not None and most is not None and r > 0 and most - r <= SLACK * most
+        if largest and self.escapes():
+            return "ball", True
+        return "smaller ball", self.statement.shrink and r is not None and r > 0
 
     def escapes(self) -> bool:
         """Whether a point leaves the region: else no ball is the set (proofs/invariant-set.md (4))."""
@@ -86,6 +104,61 @@ class Results:
             return None
         self.needed.add(min(found)[1])
         return min(found)[0]
+
+    def route(self, name: str) -> Route:
+        s, line = self.state, self.one(name, name)
+        if line is None or line.domain != self.domain:
+            raise Rejected(f"gain and residual of {name} refer to another set")
+        k, least = None, self.missed  # what the target itself misses, every route has to allow for
+        if name == "slope":
+            k = far(self.attained(f"slope[{s},{s}]"))
+        if name == "split":
+            k, missed = far(self.attained(f"split-slope[{s},{s}]")), far(self.attained(f"split-residual[{s}]"))
+            least = greater(least, self.moved_at_least(missed))
+        gain, residual = Span(k, line.concludes["gain"]), Span(least, line.concludes["residual"])
+        bounded = self.one("ultimate-bound", f"bound[{name}]")
+        if bounded is None:
+            return Route(gain, residual)
+        lower = None if k is None or least is None or k >= 1 else least / (1 - k)
+        return Route(gain, residual, Span(greater(lower, self.orbit), bounded.concludes["bound"]))
+
+    def chosen(self) -> str:
+        """The route reported: the one asked for, else the one with the least bound."""
+        if self.statement.route != "best":
+            return self.statement.route
+        ends = [(r.bound.upper, i, n) for i, (n, r) in enumerate(self.routes.items()) if r.bound is not None]
+        return min(ends)[2] if ends else next(iter(self.routes), "slope")
+
+    def contraction(self) -> Span:
+        """The best gain of the routes that have one: a curve's slope is no contraction."""
+        found = [r.gain for n, r in self.routes.items() if n != "curve"]
+        lowers = [g.lower for g in found if g.lower is not None]
+        uppers = [g.upper for g in found if g.upper is not None]
+        every = bool(lowers) and len(lowers) == len(found)
+        return Span(min(lowers) if every else None, min(uppers, default=None))
+
+    def least_bound(self) -> Span | None:
+        """How far the state can be in the long run, by the best argument on the set."""
+        found = [r.bound.upper for r in self.routes.values() if r.bound is not None and r.bound.upper is not None]
+        curve = self.one("curve", "curve")
+        found += [curve.concludes["sharp"]] if curve is not None and self.settled else []  # proofs/curve.md (3)
+        return Span(self.orbit, min(found)) if found else None
+
+    def pushed(self) -> Span | None:
+        """proofs/settling.md (2): what is left of the radius."""
+        if self.best is None or self.best.upper is None or self.radius.lower is None:
+            return None
+        room = self.radius.lower - self.best.upper
+        return Span(room, self.room) if room > 0 else None
+
+    def room_left(self, orbit: Line | None) -> Fraction | None:
+        """How far a state of an orbit can be pushed at most without leaving the set: proofs/settling.md (2)."""
+        if orbit is None or self.edge is None:
+            return None
+        (low, high), _ = self.derivation.region()
+        if self.kind == "region":
+            return min(high - orbit.concludes["highest"], orbit.concludes["lowest"] - low)
+        return self.edge - orbit.concludes["distance"]
 
     def moved_at_least(self, residual: Fraction | None) -> Fraction | None:
         """The residual surely reached: miss of the target and how far held quantities surely move it."""
@@ -121,38 +194,119 @@ class Results:
         return Span(low[0] if low else None, high[0] if high else None)
 
     def required(self, number: int, r: Any) -> Outcome:
-        if r.stance is not None:
+        if r.kind in RANGED and r.stance is None:
+            return self.ranged(number, r)
+        if r.stance is not None or r.over:
             return Outcome("undecided", None)
-        c = constant(r.constant, self.statement.values) if r.constant is not None else None
-        free = self.statement.route == "slope" or not self.statement.correction
         if r.kind == "settles":
-            ok = self.whole and self.bound is not None and less(self.bound.upper, self.radius.lower)
-            return Outcome("proved" if ok else "undecided", self.bound)
-        if r.kind in ("value", "sensitivity"):
-            return self.ranged(number, r, c)
-        spans = {"gain": self.gain, "residual": self.residual, "bound": self.bound, "radius": self.radius}
-        span = spans.get(r.kind)
-        if r.over or span is None or c is None or (r.kind == "radius" and not self.settled):
-            return Outcome("undecided", None)
+            return self.settles()
+        c = constant(r.constant, self.statement.values)
         if r.kind == "radius":
-            proved = compared(r.relation, Span(span.lower, None), c)
-        else:
-            proved = self.whole and compared(r.relation, Span(None, span.upper), c)
-        refutable = r.kind in ("gain", "residual") and free
-        refuted = refutable and opposed(r.relation, Span(None, span.lower), c)
-        return Outcome("proved" if proved else "refuted" if refuted else "undecided", span)
+            span = self.radius if self.settled else Span(None, self.edge)
+            return verdict(compared(r.relation, Span(span.lower, None) if self.settled else NOTHING, c),
+                           opposed(r.relation, Span(self.edge, None), c), span)  # fmt: skip
+        if r.kind == "gain":
+            return self.gained(r, c)
+        if r.kind == "push":
+            return self.push_outcome(r, c)
+        if r.kind == "steps":
+            return self.stepped(number, r, c)
+        spans = {"residual": self.residual, "bound": self.best if r.state else self.bound, "sharp_bound": self.sharp}
+        found, most = spans[r.kind], self.missed if r.kind == "residual" else self.orbit
+        proved = self.whole and found is not None and compared(r.relation, Span(None, found.upper), c)
+        if found is None and most is not None:
+            found = Span(most, None)
+        return verdict(proved, opposed(r.relation, Span(None, most), c), found)
 
-    def ranged(self, number: int, r: Any, c: tuple[Fraction, Fraction] | None) -> Outcome:
+    def settles(self) -> Outcome:
+        """proofs/ultimate-bound.md; refuted by an orbit that stays as far out as the set reaches."""
+        r = self.radius.lower
+        ok = self.whole and self.best is not None and less(self.best.upper, r)
+        beyond = self.orbit is not None and self.edge is not None and self.orbit >= self.edge
+        return verdict(ok, beyond, self.best)
+
+    def gained(self, r: Any, c: tuple[Fraction, Fraction]) -> Outcome:
+        """Refuted only where no route is left that might have a smaller gain: proofs/attained.md (3)."""
+        asked = self.statement.route
+        span = self.routes.get(asked, Route()).gain if asked in ("slope", "split") else self.contraction()
+        final = asked in ("slope", "split") or not self.statement.correction
+        proved = self.whole and compared(r.relation, Span(None, span.upper), c)
+        return verdict(proved, final and opposed(r.relation, Span(None, span.lower), c), span)
+
+    def push_outcome(self, r: Any, c: tuple[Fraction, Fraction]) -> Outcome:
+        """The largest push is not attained itself, so the constant has to be smaller: proofs/settling.md (2)."""
+        if r.during:
+            return Outcome("undecided", None)
+        proved = self.settled and self.push is not None and less(c[1], self.push.lower)
+        span = self.push if self.push is not None else None if self.room is None else Span(None, self.room)
+        return verdict(proved, opposed(r.relation, Span(self.room, None), c), span)
+
+    def stepped(self, number: int, r: Any, c: tuple[Fraction, Fraction]) -> Outcome:
+        """proofs/settling.md (1): steps after which the error stays within `to`, from any start within `from`."""
+        start, end = (constant(e, self.statement.values) for e in (r.start, r.end))
+        most: int | None = None
+        if self.settled and less(start[1], self.radius.lower, equal=True):
+            counts = [n for name in self.routes if (n := self.count(name, start[1], end[0])) is not None]
+            most = min(counts, default=None)
+        least: Fraction | None = None
+        paths = [(x.concludes["steps"] + 1, n) for n, x in self.lines("path", "path")
+                 if x.concludes["from"] <= start[0] and x.concludes["distance"] > end[1]]  # fmt: skip
+        if paths:
+            least, line = max(paths)
+            self.needed.add(line)
+        span = Span(least, None if most is None else Fraction(most))
+        proved = most is not None and compared(r.relation, Span(None, Fraction(most)), c)
+        return verdict(proved, opposed(r.relation, Span(None, least), c), None if span == NOTHING else span)
+
+    def count(self, name: str, error: Fraction, wanted: Fraction) -> int | None:
+        """Steps by one route: the error is led from level to level, rounded up each time."""
+        line = self.one(name, name)
+        if line is None or wanted < 0:
+            return None
+
+        def led(e: Fraction) -> Fraction:
+            return line.concludes["gain"] * e + line.concludes["residual"]
+
+        if name == "curve":
+            used = [self.proof.lines[n] for n in line.uses]
+            radii = used[0].domain.radii if used[0].domain is not None else ()
+            highest = levels(used[1 : len(radii) + 1], movement(self.derivation, used[len(radii) + 2 :]))
+            by_line = led
+
+            def led(e: Fraction) -> Fraction:
+                within = [level for rho, level in zip(radii, highest, strict=True) if rho >= e]
+                return min(by_line(e), *within[:1])
+
+        if not led(wanted) <= wanted:
+            return None
+        for n in range(MOST_STEPS):
+            if error <= wanted:
+                return n
+            after = led(error)
+            if after.denominator.bit_length() > LONG:
+                after = Fraction(-((-after * GRAIN) // 1), GRAIN)
+            if after >= error:
+                return None
+            error = after
+        return None
+
+    def ranged(self, number: int, r: Any) -> Outcome:
         line, taken = self.one("range", f"require[{number}]"), self.attained(f"require[{number}]")
         if line is not None and line.domain != self.domain:
             raise Rejected(f"require[{number}]: over another set than the gain")
         value = Span(line.concludes["lower"], line.concludes["upper"]) if line is not None else None
         proved = line is not None and (self.whole or not line.on_set)
+        zero = (Fraction(0), Fraction(0)) if r.kind == "always" else None
+        c = zero or (constant(r.constant, self.statement.values) if r.constant is not None else None)
         if c is not None:
             proved = proved and value is not None and compared(r.relation, value, c)
             if opposed(r.relation, taken, c):
                 return Outcome("refuted", value, taken)
         return Outcome("proved" if proved else "undecided", value, taken)
+
+
+def verdict(proved: bool, refuted: bool, span: Span | None) -> Outcome:
+    return Outcome("proved" if proved else "refuted" if refuted else "undecided", span)
 
 
 def far(span: Span) -> Fraction | None:
@@ -161,8 +315,13 @@ def far(span: Span) -> Fraction | None:
     return max(max(ends), Fraction(0)) if ends else None
 
 
-def less(a: Fraction | None, b: Fraction | None) -> bool:
-    return a is not None and b is not None and a < b
+def greater(a: Fraction | None, b: Fraction | None) -> Fraction | None:
+    """The larger of two lower ends, as far as known."""
+    return max((x for x in (a, b) if x is not None), default=None)
+
+
+def less(a: Fraction | None, b: Fraction | None, equal: bool = False) -> bool:
+    return a is not None and b is not None and (a < b or (equal and a == b))
 
 
 def compared(relation: str, span: Span, c: tuple[Fraction, Fraction]) -> bool:
@@ -185,108 +344,3 @@ def opposed(relation: str, taken: Span, c: tuple[Fraction, Fraction]) -> bool:
     if relation == ">":
         return taken.lower is not None and taken.lower <= c[0]
     return relation == ">=" and taken.lower is not None and taken.lower < c[0]
-
-
-def hold(results: Results, claimed: Any) -> None:
-    """Raises Rejected where `results` of a certificate says more than, or other than, what was derived."""
-    s = results.state
-    settled, bound, radius = results.settled, results.bound, results.radius if results.settled else None
-    keys(
-        claimed,
-        "results",
-        "set route gain residual bound sharp_bound radius states routes metric sensitivities gain_intervals "
-        "requirements",
-    )
-    if claimed["set"] is not None or settled:
-        keys(claimed["set"], "results.set", "kind centre radius")
-        same(claimed["set"]["kind"], results.kind, "results.set.kind")
-        keys(claimed["set"]["centre"], "results.set.centre", s)
-        span(claimed["set"]["centre"][s], results.centre, "results.set.centre")
-        span(claimed["set"]["radius"], radius, "results.set.radius", inward=True)
-    same(claimed["route"], "slope", "results.route")
-    for name, derived in (("gain", results.gain), ("residual", results.residual), ("bound", bound)):
-        span(claimed[name], derived, f"results.{name}")
-    span(claimed["radius"], radius, "results.radius", inward=True)
-    same(claimed["sharp_bound"], None, "results.sharp_bound")
-    keys(claimed["states"], "results.states", s)
-    keys(claimed["states"][s], f"results.states.{s}", "bound sharp_bound radius push")
-    span(claimed["states"][s]["bound"], bound, f"results.states.{s}.bound")
-    span(claimed["states"][s]["radius"], radius, f"results.states.{s}.radius", inward=True)
-    same([claimed["states"][s]["sharp_bound"], claimed["states"][s]["push"]], [None, None], f"results.states.{s}")
-    keys(claimed["routes"], "results.routes", "slope")
-    keys(claimed["routes"]["slope"], "results.routes.slope", "gain residual bound")
-    for name, derived in (("gain", results.gain), ("residual", results.residual), ("bound", bound)):
-        span(claimed["routes"]["slope"][name], derived, f"results.routes.slope.{name}")
-    same(claimed["metric"], {"kind": "box", "weights": {s: "1"}}, "results.metric")
-    same(claimed["gain_intervals"], [], "results.gain_intervals")
-    bands(results, claimed["sensitivities"])
-    if not isinstance(claimed["requirements"], list) or len(claimed["requirements"]) != len(results.requirements):
-        raise Rejected("results.requirements: one entry a requirement of the claim")
-    for number, (entry, outcome) in enumerate(zip(claimed["requirements"], results.requirements, strict=True), 1):
-        requirement(results, number, entry, outcome)
-
-
-def requirement(results: Results, number: int, entry: Any, outcome: Outcome) -> None:
-    r, at = results.statement.requirements[number - 1], f"results.requirements[{number}]"
-    ranged = r.kind in ("value", "sensitivity")
-    keys(entry, at, "that verdict value limited_by" + (" attained" if ranged else ""))
-    same(entry["that"], r.text, f"{at}.that")
-    if entry["verdict"] not in ("proved", "refuted", "undecided"):
-        raise Rejected(f"{at}.verdict: proved, refuted or undecided")
-    if entry["verdict"] != "undecided" and entry["verdict"] != outcome.verdict:
-        raise Rejected(f"{at}.verdict: {entry['verdict']} is claimed, {outcome.verdict} was derived")
-    span(entry["value"], outcome.value, f"{at}.value", inward=r.kind == "radius")
-    if ranged:
-        span(entry["attained"], outcome.attained, f"{at}.attained", within=True)
-    remark = entry["limited_by"]
-    if remark is not None and (
-        not isinstance(remark, str) or not remark or len(remark) > REMARK or not remark.isprintable()
-    ):
-        raise Rejected(f"{at}.limited_by: null or a printable remark")
-    if remark is None and (entry["verdict"] == "undecided" or results.derivation.leaves_out(r)):
-        raise Rejected(f"{at}.limited_by: must say what limits this")
-
-
-def bands(results: Results, claimed: Any) -> None:
-    """`sensitivities`: the band of each sensitivity asked for without `over`."""
-    wanted = [
-        (r, o.value)
-        for r, o in zip(results.statement.requirements, results.requirements, strict=True)
-        if r.kind == "sensitivity" and not r.over and o.value is not None and o.verdict is not None
-    ]
-    if not isinstance(claimed, list) or len(claimed) != len(wanted):
-        raise Rejected("results.sensitivities: one entry a sensitivity of the claim without over")
-    for entry, (r, value) in zip(claimed, wanted, strict=True):
-        keys(entry, "results.sensitivities", "of by lower upper")
-        same([entry["of"], entry["by"]], [r.state, r.by], "results.sensitivities")
-        span({"lower": entry["lower"], "upper": entry["upper"]}, value, "results.sensitivities")
-
-
-def keys(claimed: Any, place: str, wanted: str) -> None:
-    if not isinstance(claimed, dict) or set(claimed) != set(wanted.split(" ")):
-        raise Rejected(f"{place}: the keys are {wanted.replace(' ', ', ')}")
-
-
-def same(claimed: Any, derived: Any, place: str) -> None:
-    if claimed != derived or type(claimed) is not type(derived):
-        raise Rejected(f"{place}: {claimed!r:.60} is claimed, {derived!r:.60} was derived")
-
-
-def span(claimed: Any, derived: Span | None, place: str, inward: bool = False, within: bool = False) -> None:
-    """A claimed pair of ends must contain the derived one; null claims nothing.
-
-    `inward`: of a quantity proved by its lower end. `within`: attained ends, which must lie inside the derived ones.
-    """
-    if claimed is None:
-        return
-    keys(claimed, place, "lower upper")
-    for end in ("lower", "upper"):
-        if claimed[end] is None:
-            continue
-        x, y = quantity(claimed[end], f"{place}.{end}"), None if derived is None else getattr(derived, end)
-        if y is None:
-            raise Rejected(f"{place}.{end}: nothing was derived")
-        if not (x <= y if (end == "lower") != within else x >= y):
-            raise Rejected(f"{place}.{end}: more is claimed than was derived")
-    if inward and derived is None:
-        raise Rejected(f"{place}: nothing was derived")

@@ -7,13 +7,14 @@ from fractions import Fraction
 from itertools import product
 from typing import Any
 
-from .derive import Derivation, Domain, Meaning, Unprovable
-from .exact import Exact
-from .numerals import read_number
-from .ranges import Ends, Evaluator, walk
-from .reals import Scaled, Undefined
+from .courses import arithmetic, orbit, path, place
+from .derive import Derivation, Unprovable
+from .ranges import Evaluator, walk
+from .reals import Undefined
+from .theorems import THEOREMS, Line, Rejected, quantity, shells
 
-BITS = (24, 4096)
+__all__ = ["Line", "Proof", "Rejected", "place", "quantity"]
+
 SHAPES = {
     "range": (("bits", "trees"), ("lower", "upper")),
     "point": (("at", "bits"), ("lower", "upper")),
@@ -21,22 +22,13 @@ SHAPES = {
     "invariant-region": ((), ()),
     "invariant-ball": ((), ()),
     "slope": ((), ("gain", "residual")),
+    "split": ((), ("gain", "residual")),
+    "shells": (("radii", "slope"), ()),
+    "curve": ((), ("gain", "residual", "sharp")),
+    "orbit": (("bits", "held", "start", "steps"), ("distance", "highest", "lowest")),
+    "path": (("bits", "held", "start", "steps"), ("distance", "from", "steps")),
     "ultimate-bound": ((), ("bound",)),
 }
-
-
-class Rejected(Exception):
-    """A line that does not hold, and why."""
-
-
-@dataclass(frozen=True)
-class Line:
-    rule: str
-    proves: str
-    uses: tuple[int, ...]
-    concludes: dict[str, Fraction]
-    domain: Domain | None = None
-    on_set: bool = False
 
 
 @dataclass
@@ -61,11 +53,22 @@ class Proof:
                 raise Rejected(f"{part}: the keys of {rule} are {', '.join(keys) or 'none'}")
         claimed = {key: quantity(text, f"concludes.{key}") for key, text in raw["concludes"].items()}
         used = [self.lines[n] for n in uses]
+        witness = raw["witness"]
         try:
             if rule in ("range", "point"):
-                line = self.enclosed(rule, proves, tuple(uses), used, raw["witness"], claimed)
+                line = self.enclosed(rule, proves, tuple(uses), used, witness, claimed)
+            elif rule == "shells":
+                if not isinstance(witness["radii"], list):
+                    raise Rejected("radii: a list of numbers")
+                radii = tuple(quantity(r, "radii") for r in witness["radii"][:1000])
+                domain = shells(self.derivation, proves, used, radii, quantity(witness["slope"], "slope"))
+                line = Line(rule, proves, tuple(uses), claimed, domain)
+            elif rule in ("orbit", "path"):
+                course = orbit if rule == "orbit" else path
+                line = Line(rule, proves, tuple(uses), claimed, course(self.derivation, proves, used, witness, claimed))
             else:
-                line = THEOREMS[rule](self, proves, tuple(uses), used, claimed)
+                proved = THEOREMS[rule](self.derivation, proves, used, claimed)
+                line = Line(rule, proves, tuple(uses), claimed, proved)
         except (Undefined, Unprovable) as why:
             raise Rejected(str(why)) from None
         self.lines[number] = line
@@ -88,13 +91,10 @@ class Proof:
         meaning = self.derivation.meaning(proves, domain)
         if used and proves.startswith(("target", "image")):
             raise Rejected("uses: this obligation rests on no other line")
-        bits = witness["bits"]
-        if type(bits) is not int or (bits and not BITS[0] <= bits <= BITS[1]):
-            raise Rejected(f"bits: 0 for exact rationals, or {BITS[0]} to {BITS[1]}")
-        arithmetic = Scaled(bits) if bits else Exact()
+        precision = arithmetic(witness["bits"])
         names = [v.name for v in meaning.variables]
         evaluator = Evaluator(
-            self.derivation.terms, meaning.root, meaning.by, names, self.derivation.statement.libraries, arithmetic
+            self.derivation.terms, meaning.root, meaning.by, names, self.derivation.statement.libraries, precision
         )
         if rule == "range":
             trees = witness["trees"]
@@ -104,120 +104,7 @@ class Proof:
             self.leaves += leaves
         else:
             hull = evaluator.wanted(evaluator.run(place(meaning, witness["at"]), False, touching=True))
-        low, high = arithmetic.ends(hull)
+        low, high = precision.ends(hull)
         if not (claimed["lower"] <= low and high <= claimed["upper"]):
             raise Rejected(f"{proves}: the range shown is wider than what is concluded")
         return Line(rule, proves, uses, claimed, domain, meaning.on_set)
-
-    def largest_ball(self, proves: str, uses: tuple[int, ...], used: list[Line], claimed: dict[str, Fraction]) -> Line:
-        """proofs/invariant-set.md: R is at most the distance of the target from the edge of the region."""
-        require(proves, "ball", used, [("range", f"target[{self.derivation.state}]")])
-        target = used[0].concludes
-        _, inner = self.derivation.region()
-        if not 0 <= claimed["radius"] <= min(target["lower"] - inner[0], inner[1] - target["upper"]):
-            raise Rejected("radius: the ball is not shown to lie in the region")
-        domain = Domain(True, claimed["radius"], (target["lower"], target["upper"]))
-        return Line("largest-ball", proves, uses, claimed, domain)
-
-    def invariant_region(
-        self, proves: str, uses: tuple[int, ...], used: list[Line], claimed: dict[str, Fraction]
-    ) -> Line:
-        """proofs/invariant-set.md: F(X, W) in X, and every target in X."""
-        s = self.derivation.state
-        require(proves, "invariant", used, [("range", f"target[{s}]"), ("range", f"image[{s}]")])
-        _, inner = self.derivation.region()
-        for line in used:
-            if not (inner[0] <= line.concludes["lower"] and line.concludes["upper"] <= inner[1]):
-                raise Rejected(f"{line.proves} is not shown to stay in the region")
-        target = used[0].concludes
-        return Line(
-            "invariant-region", proves, uses, claimed, Domain(False, Fraction(0), (target["lower"], target["upper"]))
-        )
-
-    def slope(self, proves: str, uses: tuple[int, ...], used: list[Line], claimed: dict[str, Fraction]) -> Line:
-        """proofs/slope.md: k from the slopes over the set, the residual from the target's own step and movement."""
-        s, moving = self.derivation.state, self.derivation.moving()
-        wanted = [("range", f"slope[{s},{s}]"), ("range", f"target-miss[{s}]")]
-        require(proves, "slope", used, wanted + [("range", f"target-slope[{s},{h}]") for h in moving])
-        k = magnitude(used[0])
-        residual = magnitude(used[1])
-        for h, line in zip(moving, used[2:], strict=True):
-            residual += magnitude(line) * self.derivation.change(h)[1]
-        if not (claimed["gain"] >= k and claimed["residual"] >= residual):
-            raise Rejected("gain or residual: less than what the lines used show")
-        return Line("slope", proves, uses, claimed, used[0].domain)
-
-    def invariant_ball(
-        self, proves: str, uses: tuple[int, ...], used: list[Line], claimed: dict[str, Fraction]
-    ) -> Line:
-        """proofs/invariant-set.md: k R + residual <= R."""
-        require(proves, "invariant", used, [("largest-ball", "ball"), ("slope", "slope")])
-        ball, pair = used
-        if pair.domain != ball.domain or ball.domain is None:
-            raise Rejected("the gain refers to another set")
-        r = ball.domain.radius
-        if not pair.concludes["gain"] * r + pair.concludes["residual"] <= r:
-            raise Rejected("gain times radius plus residual exceeds the radius")
-        return Line("invariant-ball", proves, uses, claimed, ball.domain)
-
-    def ultimate_bound(
-        self, proves: str, uses: tuple[int, ...], used: list[Line], claimed: dict[str, Fraction]
-    ) -> Line:
-        """proofs/ultimate-bound.md: the residual over 1 - k, for k < 1 on an invariant set."""
-        if len(used) != 2 or proves != "bound" or used[0].proves != "invariant" or used[1].rule != "slope":
-            raise Rejected("uses: the invariant set, then gain and residual")
-        invariant, pair = used
-        if pair.domain != invariant.domain:
-            raise Rejected("the gain refers to another set")
-        k, residual = pair.concludes["gain"], pair.concludes["residual"]
-        if not (0 <= k < 1 and claimed["bound"] >= residual / (1 - k)):
-            raise Rejected("bound: less than residual / (1 - gain), or the gain is not below 1")
-        return Line("ultimate-bound", proves, uses, claimed, invariant.domain)
-
-
-THEOREMS = {
-    "largest-ball": Proof.largest_ball,
-    "invariant-region": Proof.invariant_region,
-    "slope": Proof.slope,
-    "invariant-ball": Proof.invariant_ball,
-    "ultimate-bound": Proof.ultimate_bound,
-}
-
-
-def require(proves: str, name: str, used: list[Line], wanted: list[tuple[str, str]]) -> None:
-    """That a theorem proves its obligation from lines of exactly these rules and obligations."""
-    if proves != name or [(line.rule, line.proves) for line in used] != wanted:
-        raise Rejected(f"{name} rests on {', '.join(' '.join(w) for w in wanted)}")
-
-
-def magnitude(line: Line) -> Fraction:
-    return max(abs(line.concludes["lower"]), abs(line.concludes["upper"]))
-
-
-def quantity(text: Any, place_: str) -> Fraction:
-    if not isinstance(text, str):
-        raise Rejected(f"{place_}: a proved number is written as text")
-    try:
-        return read_number(text)
-    except ValueError as why:
-        raise Rejected(f"{place_}: {why}") from None
-
-
-def place(meaning: Meaning, at: Any) -> list[Ends]:
-    """A point inside the domain: an exact value a variable, `#rank` for a finite list."""
-    if not isinstance(at, dict) or set(at) != {v.name for v in meaning.variables}:
-        raise Rejected("at: one value for each variable of the obligation")
-    box: list[Ends] = []
-    for v in meaning.variables:
-        text = at[v.name]
-        if v.listed:
-            ranks = {f"#{k}": cell for k, cell in enumerate(v.cells)}
-            if not isinstance(text, str) or text not in ranks:
-                raise Rejected(f"at.{v.name}: # and the rank of a listed value")
-            box.append(ranks[text])
-            continue
-        x = quantity(text, f"at.{v.name}")
-        if not v.inside[0] <= x <= v.inside[1]:
-            raise Rejected(f"at.{v.name}: outside the range")
-        box.append((x, x))
-    return box

@@ -8,6 +8,7 @@ from itertools import pairwise
 from .grammar import Expression, Node, Refused, exact, powered
 from .model import Stance, Statement
 
+DEEPEST, MOST_PAIRS = 40, 10_000
 FOLDED = frozenset(["add", "sub", "mul", "div", "neg", "sqrt", "abs", "min", "max"])
 Term = tuple[str, tuple[int, ...], Fraction | str | None]
 
@@ -45,6 +46,43 @@ class Terms:
             except Refused:
                 pass
         return base if p == 1 else self.put("power", (base,), p)
+
+    def addends(self, root: int) -> list[tuple[int, int]]:
+        """Signs and terms whose sum a term is."""
+        found, waiting = [], [(1, root)]
+        while waiting:
+            sign, k = waiting.pop()
+            op, args, payload = self.all[k]
+            if op in ("add", "sub", "neg"):
+                signs = {"add": (1, 1), "sub": (1, -1), "neg": (-1,)}[op]
+                waiting += [(sign * s, a) for s, a in zip(signs, args, strict=True)]
+            elif payload != 0:
+                found.append((sign, k))
+        return found
+
+    def difference(self, a: int, b: int, deep: int = 0) -> int:
+        """a − b without the terms and factors both have: proofs/split.md (2)."""
+        net: dict[int, int] = {}
+        for side, root in ((1, a), (-1, b)):
+            for sign, k in self.addends(root):
+                net[k] = net.get(k, 0) + side * sign
+        left = [k for k, n in net.items() for _ in range(n)]
+        right = [k for k, n in net.items() for _ in range(-n)]
+        few = deep < DEEPEST and len(left) * len(right) < MOST_PAIRS
+        total = self.put("number", (), Fraction(0))
+        for k in left:
+            for m in right if few else ():
+                common = set(self.all[k][1]) & set(self.all[m][1])
+                if self.all[k][0] == self.all[m][0] == "mul" and common:
+                    factor = min(common)
+                    rest = [next((x for x in self.all[t][1] if x != factor), factor) for t in (k, m)]
+                    k = self.put("mul", (factor, self.difference(rest[0], rest[1], deep + 1)))
+                    right.remove(m)
+                    break
+            total = self.put("add", (total, k))
+        for m in right:
+            total = self.put("sub", (total, m))
+        return total
 
     def below(self, root: int) -> list[int]:
         """Every term the root is built from, in order, the root last."""

@@ -148,7 +148,8 @@ class Declared(Fields):
                     raise Bad("at: a table of one to four axis columns and where each is read is expected")
                 if file not in self.data:
                     raise Bad(f"{file[:60]}: the file is not there")
-                library = parse_library(file, self.data[file], {a: self.expression(e) for a, e in at.items()})
+                axes = {a: self.expression(e) for a, e in at.items()}
+                library = parse_library(file, self.data[file], axes, self.work)
                 found.append(library)
                 for column in library.columns:
                     self.declare(column, file)

@@ -13,6 +13,7 @@ from .errors import Bad
 from .expression import Expression, Node
 from .model import Claim, Stance
 
+MAX_CANCELLED, MAX_PAIRS = 40, 10_000  # products within products that are told apart, and pairs of them in a sum
 FOLDED = frozenset({"add", "sub", "mul", "div", "neg", "sqrt", "abs", "min", "max"})
 
 
@@ -69,6 +70,50 @@ class Graph:
         except Bad:  # too long to be held exactly, or not defined: left to interval arithmetic
             return None
         return None if value is None else Gate("number", value=value)
+
+    def difference(self, a: int, b: int, depth: int = 0) -> int:
+        """a − b, an identity wherever both are defined: common terms cancel, common factors are taken out."""
+        net = self._sum(a)
+        for gate, count in self._sum(b).items():
+            net[gate] = net.get(gate, 0) - count
+        plus = [k for k, n in net.items() if n > 0 for _ in range(n)]
+        minus = [k for k, n in net.items() if n < 0 for _ in range(-n)]
+        few = depth < MAX_CANCELLED and len(plus) * len(minus) < MAX_PAIRS
+        total = self.number(0)
+        for gate in plus:
+            partner = next((m for m in minus if few and self._shared(gate, m)), None)
+            if partner is not None:
+                minus.remove(partner)
+                factor = min(self._shared(gate, partner))
+                rest = self.difference(self._other(gate, factor), self._other(partner, factor), depth + 1)
+                gate = self.add("mul", factor, rest)
+            total = self.add("add", total, gate)
+        for gate in minus:
+            total = self.add("sub", total, gate)
+        return total
+
+    def _sum(self, root: int) -> dict[int, int]:
+        """How often each addend stands in a sum, negative where it is taken away."""
+        found: dict[int, int] = {}
+        stack = [(root, 1)]
+        while stack:
+            k, sign = stack.pop()
+            gate = self.gates[k]
+            if gate.op in ("add", "sub"):
+                stack += [(gate.args[0], sign), (gate.args[1], sign if gate.op == "add" else -sign)]
+            elif gate.op == "neg":
+                stack.append((gate.args[0], -sign))
+            elif gate.op != "number" or gate.value != 0:
+                found[k] = found.get(k, 0) + sign
+        return found
+
+    def _shared(self, a: int, b: int) -> set[int]:
+        both = self.gates[a], self.gates[b]
+        return set(both[0].args) & set(both[1].args) if both[0].op == both[1].op == "mul" else set()
+
+    def _other(self, product: int, factor: int) -> int:
+        first, second = self.gates[product].args
+        return second if first == factor else first
 
     def reached(self, roots: tuple[int, ...]) -> list[int]:
         """Gates the roots are built from, in order."""

@@ -6,6 +6,7 @@ from collections.abc import Mapping
 from fractions import Fraction
 from itertools import product
 
+from .constants import Work
 from .errors import Bad
 from .expression import NAME, RESERVED, Expression
 from .model import Library
@@ -15,7 +16,7 @@ MAX_BYTES = 64 * 2**20
 MAX_ROWS = 1_000_000
 
 
-def parse_library(file: str, text: str, at: Mapping[str, Expression]) -> Library:
+def parse_library(file: str, text: str, at: Mapping[str, Expression], work: Work) -> Library:
     """The library of a file, its axes in the order of `at`. Raises Bad naming row and column."""
     lines = _lines(file, text)
     header = lines[0].split(",")
@@ -38,10 +39,10 @@ def parse_library(file: str, text: str, at: Mapping[str, Expression]) -> Library
     ranks = [header.index(a) for a in at]
     for number, line in enumerate(lines[1:], 2):  # spellings first: converting a long file takes far longer
         if not ROW.match(line):
-            _row(file, number, header, line)
+            _row(file, number, header, line, work)
     rows: dict[tuple[Fraction, ...], tuple[int, list[Fraction]]] = {}
     for number, line in enumerate(lines[1:], 2):
-        values = _row(file, number, header, line)
+        values = _row(file, number, header, line, work)
         node = tuple(values[r] for r in ranks)
         if node in rows:
             raise Bad(f"{file}: row {number}: the same node as row {rows[node][0]}; remove one")
@@ -83,7 +84,7 @@ def _lines(file: str, text: str) -> list[str]:
     return lines
 
 
-def _row(file: str, number: int, header: list[str], line: str) -> list[Fraction]:
+def _row(file: str, number: int, header: list[str], line: str, work: Work) -> list[Fraction]:
     cells = line.split(",")
     if len(cells) != len(header):
         raise Bad(f"{file}: row {number}: {len(cells)} cell(s), the header has {len(header)}")
@@ -94,4 +95,5 @@ def _row(file: str, number: int, header: list[str], line: str) -> list[Fraction]
         except Bad as why:
             found = "blank" if not cell.strip() else str(why)
             raise Bad(f"{file}: row {number}, column {name}: {found}") from None
+        work.spend((values[-1], values[-1]))
     return values

@@ -6,7 +6,7 @@ The checker derives the same list from the claim's text on its own; tests hold t
 from __future__ import annotations
 
 from collections.abc import Mapping
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from fractions import Fraction
 from itertools import pairwise
 from math import prod
@@ -16,7 +16,7 @@ from .errors import Bad
 from .graph import Graph, Scope
 from .model import Claim, Quantity, Range, Requirement
 
-PROVABLE = ("settles", "gain", "residual", "bound", "radius", "sensitivity", "value")
+RANGED = ("value", "sensitivity", "always")  # requirements that a range proves
 MOST_CELLS = 1_000_000
 Ends = tuple[Fraction, Fraction]
 
@@ -101,11 +101,65 @@ class Obligations:
         hulls = {h: (self._occurs(self.claim.uncertain[h]),) * 2 for h in self.moving()}
         return self._of(f"target-slope[{self.state},{held}]", root, held, hulls)
 
+    def split_slope(self, domain: Domain) -> Obligation:
+        """split-slope[s,s]: ∂(x + F − N)/∂x over the set, N the map without its correction (proofs/split.md)."""
+        s, g = self.state, self.graph
+        bound, ranges = self._set(domain)
+        full, nominal = self._scope(bound, cut=s), self._scope({**bound, **self._uncorrected()}, cut=s)
+        change = g.difference(full.name(f"next({s})"), nominal.name(f"next({s})"))
+        return self._of(f"split-slope[{s},{s}]", g.add("add", full.name(s), change), s, ranges)
+
+    def split_residual(self, domain: Domain) -> Obligation:
+        """split-residual[s]: N − x + F(x*) − N(x*) over the set."""
+        s, g = self.state, self.graph
+        bound, ranges = self._set(domain)
+        at = {s: self._scope({}).name(f"target({s})")}
+        kept = g.add(
+            "sub", self._scope({**bound, **self._uncorrected()}).name(f"next({s})"), self._scope(bound).name(s)
+        )
+        there = self._scope({**at, **self._uncorrected()}).name(f"next({s})")
+        shift = g.difference(self._scope(at).name(f"next({s})"), there)
+        return self._of(f"split-residual[{s}]", g.add("add", kept, shift), "", ranges)
+
+    def _uncorrected(self) -> dict[str, int]:
+        return dict.fromkeys(self.claim.correction, self.graph.number(0))
+
+    def shell(self, number: int, domain: Domain, radii: tuple[Fraction, ...]) -> Obligation:
+        """shell[j]: F − x* where the error lies between radii j − 1 and j (proofs/curve.md)."""
+        inner, outer = radii[number - 2] if number > 1 else Fraction(0), radii[number - 1]
+        found, cells = self.error(domain, outer), ((-outer, -inner), (inner, outer))
+        error = f"error({self.state})"
+        variables = tuple(replace(v, cells=cells) if v.name == error else v for v in found.variables)
+        return replace(found, name=f"shell[{number}]", variables=variables)
+
+    def error(self, domain: Domain, radius: Fraction) -> Obligation:
+        """F − x* over the part of the set within a radius of the target (an estimate's, not proved as such)."""
+        s, g = self.state, self.graph
+        target = self._scope({}).name(f"target({s})")
+        x = g.add("add", target, g.add("variable", name=f"error({s})"))
+        if domain.kind == "region":
+            (low, high), _ = self.region()
+            x = g.add("min", g.add("max", x, g.number(low)), g.number(high))
+        root = g.add("sub", self._scope({s: x}).name(f"next({s})"), target)
+        return self._of("error", root, "", {f"error({s})": ((-radius, radius),) * 2})
+
+    def line(self, domain: Domain, slope: Fraction) -> Obligation:
+        """line[s]: |F − x*| − k|x − x*| over the set (proofs/curve.md)."""
+        s, g = self.state, self.graph
+        bound, ranges = self._set(domain)
+        scope = self._scope(bound)
+        target = scope.name(f"target({s})")
+        far, error = (g.add("abs", g.add("sub", scope.name(x), target)) for x in (f"next({s})", s))
+        return self._of(f"line[{s}]", g.add("sub", far, g.add("mul", g.number(slope), error)), "", ranges)
+
     def requirement(self, number: int, domain: Domain) -> Obligation:
-        """require[i] of a `value` or `sensitivity`: its range over the set, or over what `over` says."""
+        """require[i] of a `value`, `sensitivity` or `always` (left − right): over the set, or what `over` says."""
         wanted = self.claim.requirements[number - 1]
         bound, ranges = self._set(domain, wanted.over)
         scope = self._scope(bound, cut=wanted.by or "")
+        if wanted.left is not None and wanted.right is not None:
+            root = self.graph.add("sub", scope.node(wanted.left), scope.node(wanted.right))
+            return self._of(f"require[{number}]", root, "", ranges)
         if wanted.expression is not None:
             return self._of(f"require[{number}]", scope.node(wanted.expression), "", ranges)
         return self._of(f"require[{number}]", scope.name(f"next({wanted.state})"), wanted.by or "", ranges)
@@ -226,22 +280,18 @@ def not_yet(claim: Claim) -> str | None:
         return f"state: {len(stance.states)} states; only claims of one state can be proved yet"
     if claim.horizon != 1:
         return f"horizon: {claim.horizon}; only one step at a time can be proved yet; remove the key"
-    if claim.route not in ("best", "slope"):
-        return f"route: {claim.route} cannot be proved yet; use slope or best"
-    if claim.shrink:
-        return "shrink: smaller sets cannot be searched yet; remove the key, or state a smaller region"
+    if claim.route == "sector":
+        return "route: sector cannot be proved yet; use slope, split, curve or best"
     if any(set(constant(w, claim.values)) != {Fraction(1)} for w in claim.weights.values()):
         return "metric.weights: only the weight 1 can be used with a single state yet; remove the table"
     for number, r in enumerate(claim.requirements, 1):
-        if r.kind not in PROVABLE:
-            return f"require[{number}]: {r.kind} cannot be proved yet; provable are {', '.join(PROVABLE)}"
         folded, ends = _folded(claim, r)
         unfollowed = sorted(({r.by or ""} & folded) | (set(r.over) & (folded | ends)))
         if unfollowed:
             why = "it also sets an exponent or the end of a range, which is taken at its value"
             return f"require[{number}]: {unfollowed[0]} cannot be followed: {why}; use --set for each value"
-        if r.over and r.kind not in ("sensitivity", "value"):
-            return f"require[{number}]: over cannot be used with {r.kind} yet; use it with sensitivity or value"
+        if r.over and r.kind not in RANGED:
+            return f"require[{number}]: over cannot be used with {r.kind} yet; use it with {', '.join(RANGED)}"
     return None
 
 
@@ -253,7 +303,8 @@ def _folded(claim: Claim, r: Requirement) -> tuple[set[str], set[str]]:
     ranges = [e for q in spans if q.range is not None for e in (q.range.lower, q.range.upper)]
     ranges += [e for q in spans for e in (*(q.values or ()), q.change) if e is not None]
     texts = [*fixed.values(), *s.define.values(), *s.next.values(), *s.target.values(), *ranges]
-    texts += [e for lib in claim.libraries for e in lib.at] + ([r.expression] if r.expression is not None else [])
+    texts += [e for lib in claim.libraries for e in lib.at]
+    texts += [e for e in (r.expression, r.left, r.right) if e is not None]
     exponents = {name for e in texts for n in e.nodes if n.op == "power" for name in (n.name or "").split()}
     ends = {name for e in ranges for name in e.names()}
 

@@ -8,10 +8,13 @@ from rich.console import Console, Group, RenderableType
 from rich.table import Table
 from rich.text import Text
 
+from .cells import Cell
+
 CAUTION = (
     "This certifies the model stated in the claim, not a machine. It is neither a risk assessment nor a statement of "
     "conformity; those remain with the standards and the competent persons that apply."
 )
+MOST = 30  # rows of cells
 STYLES = {"proved": "bold green", "refuted": "bold red", "undecided": "bold yellow"}
 
 
@@ -20,13 +23,17 @@ def outcome(title: str, results: dict[str, Any], unit: str) -> RenderableType:
     quantities = Table(title=Text(title), title_justify="left", show_edge=False, pad_edge=False)
     for heading in ("quantity", "proved", "attained", "gives away", "unit"):
         quantities.add_column(heading)
-    (state,) = results["states"]
+    ((state, figures),) = results["states"].items()
+    route = results["route"]
     rows = [
         (f"gain k of {state}", results["gain"], "upper", "1"),
-        ("residual", results["residual"], "upper", unit),
-        ("ultimate bound", results["bound"], "upper", unit),
+        (f"residual ({route})", results["residual"], "upper", unit),
+        (f"ultimate bound ({route})", results["bound"], "upper", unit),
+        ("sharp bound", figures["sharp_bound"], "upper", unit),
         ("radius of the set", results["radius"], "lower", unit),
+        ("largest push", figures["push"], "lower", unit),
     ]
+    rows = [r for r in rows if r[1] is not None or r[0] not in ("sharp bound", "largest push")]
     for name, value, end, of in rows:
         other = "lower" if end == "upper" else "upper"
         if value is None:
@@ -45,7 +52,38 @@ def outcome(title: str, results: dict[str, Any], unit: str) -> RenderableType:
         if r["limited_by"]:
             row.append(f"\n{r['limited_by']}")
         verdicts.add_row(Text(r["that"]), Text(r["verdict"], STYLES[r["verdict"]]), row)
-    return Group(quantities, Text(where), Text(""), verdicts, Text(""), Text(CAUTION))
+    return Group(quantities, Text(where), *_routes(results, unit), Text(""), verdicts, Text(""), Text(CAUTION))
+
+
+def _routes(results: dict[str, Any], unit: str) -> list[RenderableType]:
+    """What each route proves, where there are several."""
+    if len(results["routes"]) < 2:
+        return []
+    table = Table(show_edge=False, pad_edge=False)
+    for heading in ("route", "gain", f"residual {unit}", f"bound {unit}", ""):
+        table.add_column(heading.strip())
+    for name, route in results["routes"].items():
+        shown = [_figure(route[q]["upper"], "≤ ") if route[q] else "none" for q in ("gain", "residual", "bound")]
+        table.add_row(name, *shown, "reported" if name == results["route"] else "")
+    return [Text(""), table]
+
+
+def cells(found: list[Cell], unit: str) -> RenderableType:
+    """The proved residual of the split route, a cell of the gait library a row, the largest first."""
+    table = Table(title=Text("residual of the interpolated gaits, by library cell"), title_justify="left")
+    table.show_edge, table.pad_edge = False, False
+    for name in found[0].ends:
+        table.add_column(name)
+    table.add_column(f"residual {unit}".strip())
+    table.add_column("")
+    most = max(float(c.residual) for c in found)
+    for cell in sorted(found, key=lambda c: -c.residual)[:MOST]:
+        share = float(cell.residual) / most if most else 0.0
+        ranges = [f"{float(a):.4g} to {float(b):.4g}" for a, b in cell.ends.values()]
+        table.add_row(*ranges, f"≤ {float(cell.residual):.5g}", "#" * round(20 * share))
+    if len(found) > MOST:
+        table.add_row(f"and {len(found) - MOST} more", *[""] * (len(found[0].ends) + 1))
+    return table
 
 
 def show(what: RenderableType, to_error: bool) -> None:

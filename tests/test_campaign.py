@@ -1,0 +1,31 @@
+"""A seeded campaign of random claims against trajectories steered at their bounds (tests/campaign.py)."""
+
+from __future__ import annotations
+
+import os
+
+import pytest
+
+from tests.campaign import Tally, run
+
+CLAIMS, BLOCK = 60 * (10 if os.environ.get("ULTIBOUND_LONG") else 1), 15
+
+
+@pytest.fixture(scope="module")
+def tally() -> Tally:
+    return Tally()
+
+
+@pytest.mark.parametrize("first", range(0, CLAIMS, BLOCK))
+def test_nothing_simulated_goes_beyond_what_is_proved(first: int, tally: Tally) -> None:
+    for seed in range(first, first + BLOCK):
+        run(seed, tally)
+
+
+def test_most_claims_that_contract_get_bounds(tally: Tally, capsys: pytest.CaptureFixture[str]) -> None:
+    """At least four in five of the claims that simulation shows to contract; a million steps in all."""
+    with capsys.disabled():
+        print("\n" + tally.table())
+    assert tally.steps >= 0.9 * 10**6 * CLAIMS / 60
+    assert tally.contracting > CLAIMS / 4
+    assert tally.bounded >= 0.8 * tally.contracting

@@ -1,0 +1,192 @@
+"""Ranges of obligations as proof lines: searched in floating point, measured in the checker's arithmetic."""
+
+from __future__ import annotations
+
+from collections.abc import Callable
+from dataclasses import dataclass
+from fractions import Fraction
+from math import log2
+
+from ..bounding.evaluate import Runner
+from ..bounding.search import Effort, Found, Point, search
+from ..checker.reals import Undefined
+from ..checker.rules import Rejected
+from ..claim import Claim
+from ..claim.graph import Graph
+from ..claim.obligations import Obligation
+from ..stepmap.symbolic import compiled
+from .lines import Writer
+
+BITS = 72
+PATIENCE = 400  # leaves beyond which second derivatives pay
+Watch = Callable[[str, int, float], None]
+
+
+@dataclass(frozen=True, slots=True)
+class Proved:
+    """A range on a line: ends the checker measured, as a line number, and what stopped its search."""
+
+    line: int
+    lower: Fraction
+    upper: Fraction
+    least: Fraction  # the smallest and the largest value surely taken
+    most: Fraction
+    stopped: str
+
+    @property
+    def size(self) -> Fraction:
+        """The largest magnitude in the range."""
+        return max(abs(self.lower), abs(self.upper))
+
+
+class Encloser:
+    """Writes range and point lines within one gap; `limits` tells what stopped each search."""
+
+    def __init__(self, claim: Claim, graph: Graph, writer: Writer, gap: float, until: float, watch: Watch) -> None:
+        self.claim, self.graph, self.writer, self.gap, self.until, self.watch = claim, graph, writer, gap, until, watch
+        self.interrupted = False
+        self.limits: dict[str, str] = {}
+        self._runners: dict[tuple[int, str, bool], Runner] = {}
+
+    def enclose(
+        self,
+        obligation: Obligation,
+        on: int | None,
+        magnitude: bool = False,
+        points: bool = True,
+        gap: float = 0.0,
+        floor: float = 0.0,
+        cells: int = 0,
+        upper: bool = False,
+    ) -> Proved | None:
+        """A range line and the points nearest its ends; None where the checker finds no finite range.
+
+        `floor` is an absolute gap that is enough whatever the size of the quantity, `cells` a limit of leaves;
+        `upper`: only the upper end is wanted.
+        """
+        w, name, wanted = self.writer, obligation.name, gap or self.gap
+        rational, share = w.rational(name, on), 1.0
+        for _ in range(5):
+            found = self.search(obligation, magnitude, wanted * share, floor * share, cells, upper)
+            bits = 0 if rational else BITS + _extra(found)
+            self.watch(f"{name}: enclosing the leaves in the checker's arithmetic", found.leaves, found.upper)
+            try:
+                ends = w.range(name, found.trees, bits, on)
+            except KeyboardInterrupt:
+                self.interrupt()
+                continue
+            except Undefined as why:
+                self.limits[name] = str(why)
+                share /= 16
+                if found.stopped:
+                    return None
+                continue
+            taken = [self._point(name, p, bits, on) for p in (found.highest, found.lowest)]
+            if found.stopped or _close(ends, [t[1] for t in taken if t], magnitude, wanted, floor, upper):
+                break
+            share /= 8
+        else:
+            if name in self.limits:
+                return None
+        self.limits[name] = "" if cells else found.stopped
+        line = w.enclosed("range", name, {"bits": bits, "trees": list(found.trees)}, ends, on)
+        if points:
+            self._write_points(name, [t for t in taken if t], magnitude, bits, on)
+        concluded = w.proof.lines[line].concludes
+        low, high = concluded["lower"], concluded["upper"]
+        least, most = min((t[1][1] for t in taken if t), default=high), max((t[1][0] for t in taken if t), default=low)
+        return Proved(line, low, high, least, most, found.stopped)
+
+    def search(
+        self,
+        obligation: Obligation,
+        magnitude: bool,
+        gap: float,
+        floor: float = 0.0,
+        cells: int = 0,
+        upper: bool = False,
+    ) -> Found:
+        """Witnesses for a range; of a value that takes many leaves, with the second-order form."""
+
+        def watch(leaves: int, high: float) -> None:
+            self.watch(obligation.name, leaves, high)
+
+        def attempt(curved: bool) -> Found:
+            patience = 10**9 if curved or obligation.by else PATIENCE
+            effort = Effort(gap, cells or self.claim.cells, self.until, watch, floor, patience, upper)
+            return search(self.runner(obligation, curved), obligation, magnitude, effort)
+
+        try:
+            found = attempt(False)
+            return attempt(True) if found.stopped == "patience" else found
+        except KeyboardInterrupt:
+            self.interrupt()
+            return attempt(False)
+
+    def runner(self, obligation: Obligation, curved: bool) -> Runner:
+        key = obligation.root, obligation.by, curved
+        if key not in self._runners:
+            names = [v.name for v in obligation.variables]
+            program = compiled(self.graph, obligation.root, obligation.by, names, curved)
+            self._runners[key] = Runner(program, names, self.claim.libraries, bool(obligation.by))
+        return self._runners[key]
+
+    def interrupt(self) -> None:
+        """The first Ctrl-C stops every search where it is; the second one ends the program."""
+        if self.interrupted:
+            raise KeyboardInterrupt
+        self.interrupted, self.until = True, 0.0
+
+    def _point(
+        self, name: str, point: Point, bits: int, on: int | None
+    ) -> tuple[dict[str, str], tuple[Fraction, Fraction]] | None:
+        at = self.writer.spelled(name, point, on)
+        try:
+            return at, self.writer.point(name, at, bits, on)
+        except (Undefined, Rejected):
+            return None
+
+    def _write_points(
+        self,
+        name: str,
+        taken: list[tuple[dict[str, str], tuple[Fraction, Fraction]]],
+        magnitude: bool,
+        bits: int,
+        on: int | None,
+    ) -> None:
+        """The points that say most: the one of largest magnitude, or those of the largest and smallest value."""
+        if not taken:
+            return
+        top, bottom = max(taken, key=lambda t: t[1][0]), min(taken, key=lambda t: t[1][1])
+        chosen = [top] if top is bottom or top[0] == bottom[0] else [top, bottom]
+        if magnitude:
+            chosen = [max(chosen, key=lambda t: max(t[1][0], -t[1][1]))]
+        for at, ends in chosen:
+            self.writer.enclosed("point", name, {"at": at, "bits": bits}, ends, on)
+
+
+def _close(
+    ends: tuple[Fraction, Fraction],
+    taken: list[tuple[Fraction, Fraction]],
+    magnitude: bool,
+    gap: float,
+    floor: float,
+    upper: bool,
+) -> bool:
+    """Whether the measured ends are within the gap of values surely taken."""
+    if not taken:
+        return False
+    high, low = max(t[0] for t in taken), min(t[1] for t in taken)
+    share, least = Fraction(gap), max(Fraction(gap) / 10**6, Fraction(floor))
+    if magnitude:
+        most = max(high, -low, Fraction(0))
+        return max(abs(ends[0]), abs(ends[1])) - most <= max(share * most, least)
+    if upper:
+        return ends[1] - high <= max(share * abs(high), least)
+    return ends[1] - high <= max(share * abs(high), least) and low - ends[0] <= max(share * abs(low), least)
+
+
+def _extra(found: Found) -> int:
+    """More fractional bits where the values are small, so that their last digits are kept."""
+    size = max(abs(found.upper), abs(found.lower))
+    return min(2000, max(0, int(-log2(size)))) if 0 < size < 1 else 0

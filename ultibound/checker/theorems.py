@@ -1,0 +1,194 @@
+"""Theorems of proofs/: what each rests on, and the arithmetic of its conclusion. One function a rule."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass, replace
+from fractions import Fraction
+from typing import Any
+
+from .derive import Derivation, Domain
+from .numerals import read_number
+
+Quantities = dict[str, Fraction]
+MOST_SHELLS = 999
+PAIRS = ("slope", "split", "curve")  # rules that conclude gain and residual
+
+
+class Rejected(Exception):
+    """A line that does not hold, and why."""
+
+
+@dataclass(frozen=True)
+class Line:
+    rule: str
+    proves: str
+    uses: tuple[int, ...]
+    concludes: Quantities
+    domain: Domain | None = None
+    on_set: bool = False
+
+
+def largest_ball(d: Derivation, proves: str, used: list[Line], claimed: Quantities) -> Domain:
+    """proofs/invariant-set.md (2): R is at most the distance of the target from the edge of the region."""
+    require(proves, "ball", used, [("range", f"target[{d.state}]")])
+    target = used[0].concludes
+    _, inner = d.region()
+    if not 0 <= claimed["radius"] <= min(target["lower"] - inner[0], inner[1] - target["upper"]):
+        raise Rejected("radius: the ball is not shown to lie in the region")
+    return Domain(True, claimed["radius"], (target["lower"], target["upper"]))
+
+
+def invariant_region(d: Derivation, proves: str, used: list[Line], claimed: Quantities) -> Domain:
+    """proofs/invariant-set.md (1): F(X, W) in X, and every target in X."""
+    require(proves, "invariant", used, [("range", f"target[{d.state}]"), ("range", f"image[{d.state}]")])
+    _, inner = d.region()
+    for line in used:
+        if not (inner[0] <= line.concludes["lower"] and line.concludes["upper"] <= inner[1]):
+            raise Rejected(f"{line.proves} is not shown to stay in the region")
+    target = used[0].concludes
+    return Domain(False, Fraction(0), (target["lower"], target["upper"]))
+
+
+def invariant_ball(d: Derivation, proves: str, used: list[Line], claimed: Quantities) -> Domain:
+    """proofs/invariant-set.md (3): k R + residual <= R."""
+    if proves != "invariant" or [x.rule for x in used[:1]] != ["largest-ball"] or len(used) != 2:
+        raise Rejected("invariant rests on the ball, then a gain and residual")
+    ball, pair = used
+    if pair.rule not in PAIRS or pair.domain != ball.domain or ball.domain is None:
+        raise Rejected("the gain refers to another set")
+    r = ball.domain.radius
+    if not pair.concludes["gain"] * r + pair.concludes["residual"] <= r:
+        raise Rejected("gain times radius plus residual exceeds the radius")
+    return ball.domain
+
+
+def slope(d: Derivation, proves: str, used: list[Line], claimed: Quantities) -> Domain | None:
+    """proofs/slope.md: k from the slopes over the set, the residual from the target's own step and movement."""
+    s = d.state
+    return mean_value(d, proves, used, claimed, ("slope", f"slope[{s},{s}]", f"target-miss[{s}]"))
+
+
+def split(d: Derivation, proves: str, used: list[Line], claimed: Quantities) -> Domain | None:
+    """proofs/split.md: k from the slopes of x + F − N, the residual from how N keeps the error."""
+    s = d.state
+    if len(used) > 1 and used[1].domain != used[0].domain:
+        raise Rejected("the residual refers to another set")
+    return mean_value(d, proves, used, claimed, ("split", f"split-slope[{s},{s}]", f"split-residual[{s}]"))
+
+
+def mean_value(
+    d: Derivation, proves: str, used: list[Line], claimed: Quantities, names: tuple[str, str, str]
+) -> Domain | None:
+    moved = [("range", x) for x in movements(d)]
+    require(proves, names[0], used, [("range", names[1]), ("range", names[2]), *moved])
+    if not (
+        claimed["gain"] >= magnitude(used[0]) and claimed["residual"] >= magnitude(used[1]) + movement(d, used[2:])
+    ):
+        raise Rejected("gain or residual: less than what the lines used show")
+    return used[0].domain
+
+
+def shells(d: Derivation, proves: str, used: list[Line], radii: tuple[Fraction, ...], slope: Fraction) -> Domain:
+    """proofs/curve.md (1): radii of shells about the target that cover the set, and the slope of a line."""
+    if proves != "shells" or len(used) != 1 or used[0].domain is None or used[0].domain.radii:
+        raise Rejected("shells rest on the one line that gives the set")
+    domain = used[0].domain
+    if not 0 < len(radii) <= MOST_SHELLS or any(not a < b for a, b in zip((Fraction(0), *radii), radii, strict=False)):
+        raise Rejected(f"radii: up to {MOST_SHELLS} rising numbers above 0")
+    (low, high), _ = d.region()
+    if not (
+        radii[-1] == domain.radius if domain.ball else radii[-1] >= max(domain.target[1] - low, high - domain.target[0])
+    ):
+        raise Rejected("radii: the shells do not cover the set")
+    return replace(domain, radii=radii, slope=slope)
+
+
+def curve(d: Derivation, proves: str, used: list[Line], claimed: Quantities) -> Domain:
+    """proofs/curve.md: a line above the error curve, and the sharp bound its shells show."""
+    domain = used[0].domain if used else None
+    if domain is None or not domain.radii:
+        raise Rejected("the curve rests on its shells")
+    m = len(domain.radii)
+    wanted = [("shells", "shells"), *(("range", f"shell[{j}]") for j in range(1, m + 1)), ("range", f"line[{d.state}]")]
+    require(proves, "curve", used, wanted + [("range", x) for x in movements(d)])
+    if any(line.domain != domain for line in used[1 : m + 2]):
+        raise Rejected("a shell or line of another set")
+    moved = movement(d, used[m + 2 :])
+    over = max(used[m + 1].concludes["upper"], Fraction(0))
+    if not (0 <= domain.slope <= claimed["gain"] and claimed["residual"] >= over + moved):
+        raise Rejected("gain or residual: less than what the line shows")
+    if not claimed["sharp"] >= sharpest(domain.radii, levels(used[1 : m + 1], moved)):
+        raise Rejected("sharp: less than what the shells show")
+    return replace(domain, radii=(), slope=Fraction(0))
+
+
+def levels(lines: list[Line], moved: Fraction) -> list[Fraction]:
+    """How far from the target a step may lead from within each radius."""
+    found, most = [], Fraction(0)
+    for line in lines:
+        most = max(most, magnitude(line))
+        found.append(most + moved)
+    return found
+
+
+def sharpest(radii: tuple[Fraction, ...], highest: list[Fraction]) -> Fraction:
+    """proofs/curve.md (3): shells are left, the outermost first, while they lead into the next."""
+    j = len(radii)
+    while j and highest[j - 1] <= (radii[j - 2] if j > 1 else 0):
+        j -= 1
+    return min(radii[j - 1], highest[j - 1]) if j else Fraction(0)
+
+
+def ultimate_bound(d: Derivation, proves: str, used: list[Line], claimed: Quantities) -> Domain | None:
+    """proofs/ultimate-bound.md: the residual over 1 - k, for k < 1 on an invariant set."""
+    if len(used) != 2 or used[0].proves != "invariant" or used[1].rule not in PAIRS:
+        raise Rejected("uses: the invariant set, then gain and residual of a route")
+    invariant, pair = used
+    if proves != f"bound[{pair.rule}]":
+        raise Rejected(f"uses: gain and residual of another route than {proves}")
+    if pair.domain != invariant.domain:
+        raise Rejected("the gain refers to another set")
+    k, residual = pair.concludes["gain"], pair.concludes["residual"]
+    if not (0 <= k < 1 and claimed["bound"] >= residual / (1 - k)):
+        raise Rejected("bound: less than residual / (1 - gain), or the gain is not below 1")
+    return invariant.domain
+
+
+THEOREMS = {
+    "largest-ball": largest_ball,
+    "invariant-region": invariant_region,
+    "slope": slope,
+    "split": split,
+    "curve": curve,
+    "invariant-ball": invariant_ball,
+    "ultimate-bound": ultimate_bound,
+}
+
+
+def movements(d: Derivation) -> list[str]:
+    return [f"target-slope[{d.state},{h}]" for h in d.moving()]
+
+
+def movement(d: Derivation, lines: list[Line]) -> Fraction:
+    """proofs/slope.md (3): how far held quantities may move the target in a step."""
+    pairs = zip(d.moving(), lines, strict=True)
+    return sum((magnitude(line) * d.change(h)[1] for h, line in pairs), Fraction(0))
+
+
+def require(proves: str, name: str, used: list[Line], wanted: list[tuple[str, str]]) -> None:
+    """That a theorem proves its obligation from lines of exactly these rules and obligations."""
+    if proves != name or [(line.rule, line.proves) for line in used] != wanted:
+        raise Rejected(f"{name} rests on {', '.join(' '.join(w) for w in wanted)}"[:300])
+
+
+def magnitude(line: Line) -> Fraction:
+    return max(abs(line.concludes["lower"]), abs(line.concludes["upper"]))
+
+
+def quantity(text: Any, place_: str) -> Fraction:
+    if not isinstance(text, str):
+        raise Rejected(f"{place_}: a proved number is written as text")
+    try:
+        return read_number(text)
+    except ValueError as why:
+        raise Rejected(f"{place_}: {why}") from None
