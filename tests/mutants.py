@@ -1,0 +1,285 @@
+"""Mutants of the checker: one comparison, sign or rounding direction of one module turned at a time.
+
+A check that no test holds to can be lost unseen. So each is turned round in a copy of the package, never in place,
+and a battery (tests/checker/test_boundaries.py) must notice: a certificate of its fixed list then gets another
+verdict, place or reason, or an assertion about one function fails. `EQUIVALENT` lists the turned expressions that
+change no verdict, each with its reason; an entry whose expression is gone, or that the battery notices, is an error.
+"""
+
+from __future__ import annotations
+
+import ast
+import importlib
+import importlib.abc
+import importlib.machinery
+import shutil
+import signal
+import sys
+import tempfile
+from collections.abc import Callable, Iterator, Sequence
+from contextlib import contextmanager
+from dataclasses import dataclass
+from pathlib import Path
+from types import CodeType, FrameType, ModuleType
+from typing import Any
+
+CHECKER = Path(__file__).parents[1] / "ultibound" / "checker"
+SECONDS = 3  # for one question: a mutant that loops is noticed by its time
+TURNED: dict[type, type] = {ast.Lt: ast.LtE, ast.LtE: ast.Lt, ast.Gt: ast.GtE, ast.GtE: ast.Gt}
+NEGATED: dict[type, type] = {
+    ast.Lt: ast.GtE, ast.LtE: ast.Gt, ast.Gt: ast.LtE, ast.GtE: ast.Lt, ast.Eq: ast.NotEq, ast.NotEq: ast.Eq,
+    ast.In: ast.NotIn, ast.NotIn: ast.In, ast.Is: ast.IsNot, ast.IsNot: ast.Is,
+}  # fmt: skip
+SIGNS: dict[type, type] = {ast.Add: ast.Sub, ast.Sub: ast.Add}
+DIRECTIONS = {"min": "max", "decimal_down": "decimal_up", "bisect_left": "bisect_right"}
+DIRECTIONS |= {other: name for name, other in DIRECTIONS.items()}
+Key = tuple[str, str, str, str]  # module, function, expression, what it became
+
+
+@dataclass(frozen=True)
+class Mutant:
+    key: Key
+    source: str
+    rank: int  # among the changes of the source, in order
+
+    def code(self) -> CodeType:
+        for n, (tree, _) in enumerate(changed_trees(self.source)):
+            if n == self.rank:
+                return compile(tree, f"<mutant of {self.key[0]}>", "exec")
+        raise IndexError(self.rank)
+
+    def __str__(self) -> str:
+        module, function, old, new = self.key
+        return f"{module}: {function}: {old}  ->  {new}"
+
+
+def replacements(node: ast.AST) -> Iterator[ast.expr | ast.stmt]:
+    """What one node is turned into, one change each."""
+    if isinstance(node, ast.Compare):
+        for k, op in enumerate(node.ops):
+            for table in (TURNED, NEGATED):
+                if type(op) in table:
+                    yield ast.Compare(
+                        node.left, [*node.ops[:k], table[type(op)](), *node.ops[k + 1 :]], node.comparators
+                    )
+    elif isinstance(node, ast.UnaryOp) and isinstance(node.op, ast.USub):
+        yield node.operand
+        match node.operand:
+            case ast.BinOp(ast.UnaryOp(ast.USub(), inner), ast.FloorDiv() | ast.RShift(), right):
+                yield ast.BinOp(inner, node.operand.op, right)
+    elif isinstance(node, (ast.BinOp, ast.AugAssign)):
+        if type(node.op) in SIGNS:
+            other = SIGNS[type(node.op)]()
+            yield (
+                ast.BinOp(node.left, other, node.right)
+                if isinstance(node, ast.BinOp)
+                else ast.AugAssign(node.target, other, node.value)
+            )
+        if isinstance(node, ast.BinOp) and isinstance(node.op, (ast.FloorDiv, ast.RShift)):
+            yield ast.UnaryOp(ast.USub(), ast.BinOp(ast.UnaryOp(ast.USub(), node.left), node.op, node.right))
+    elif isinstance(node, ast.Call) and isinstance(node.func, ast.Name):
+        if node.func.id in DIRECTIONS:
+            yield ast.Call(ast.Name(DIRECTIONS[node.func.id], ast.Load()), node.args, node.keywords)
+        if node.func.id == "abs":
+            yield node.args[0]
+
+
+def sites(node: ast.AST, inside: tuple[str, ...] = ()) -> Iterator[tuple[ast.AST, str, int | None, ast.AST, str]]:
+    """Every node below, with the field of its parent that holds it and the function it stands in."""
+    for name, value in ast.iter_fields(node):
+        if name in ("annotation", "returns"):
+            continue
+        for k, child in enumerate(value) if isinstance(value, list) else ((None, value),):
+            if isinstance(child, ast.AST):
+                deeper = inside
+                if isinstance(child, (ast.FunctionDef, ast.ClassDef)):
+                    deeper = (*inside, child.name)
+                yield node, name, k, child, ".".join(inside) or "(module)"
+                yield from sites(child, deeper)
+
+
+def changed_trees(source: str) -> Iterator[tuple[ast.Module, tuple[str, str, str]]]:
+    """The tree of a module with one change after the other, and what was changed; one tree, so look at once."""
+    tree = ast.parse(source)
+    for parent, name, k, child, function in list(sites(tree)):
+        for new in replacements(child):
+            what = function, ast.unparse(child), ast.unparse(new)
+            for part in ast.walk(new):
+                if not hasattr(part, "lineno"):
+                    ast.copy_location(part, child)
+            put(parent, name, k, new)
+            yield tree, what
+            put(parent, name, k, child)
+
+
+def mutants(module: str, source: str) -> list[Mutant]:
+    """All mutants of one module's source."""
+    return [Mutant((module, *what), source, n) for n, (_, what) in enumerate(changed_trees(source))]
+
+
+def put(parent: ast.AST, name: str, k: int | None, node: ast.AST) -> None:
+    if k is None:
+        setattr(parent, name, node)
+    else:
+        getattr(parent, name)[k] = node
+
+
+class Copies(importlib.abc.MetaPathFinder, importlib.abc.Loader):
+    """A copy of the checker's package, importable under another name, one module's code exchanged."""
+
+    NAME = "checker_under_mutation"
+
+    def __init__(self, package: Path = CHECKER) -> None:
+        with tempfile.TemporaryDirectory() as folder:  # one state of all files, whatever happens to them meanwhile
+            copy = Path(folder) / "checker"
+            shutil.copytree(package, copy, ignore=shutil.ignore_patterns("__pycache__"))
+            self.source = {p.stem: p.read_text(encoding="utf-8") for p in sorted(copy.glob("*.py"))}
+        self.code = {m: compile(text, f"<copy of {m}>", "exec") for m, text in self.source.items()}
+        self.changed: dict[str, CodeType] = {}
+
+    def module(self, fullname: str) -> str | None:
+        name = "__init__" if fullname == self.NAME else fullname.removeprefix(f"{self.NAME}.")
+        return name if name in self.code else None
+
+    def find_spec(
+        self, fullname: str, path: Sequence[str] | None = None, target: ModuleType | None = None
+    ) -> importlib.machinery.ModuleSpec | None:
+        name = self.module(fullname)
+        if name is None:
+            return None
+        return importlib.machinery.ModuleSpec(fullname, self, is_package=name == "__init__")
+
+    def exec_module(self, module: ModuleType) -> None:
+        name = str(self.module(module.__name__))
+        exec(self.changed.get(name, self.code[name]), module.__dict__)
+
+    @contextmanager
+    def imported(self, changed: dict[str, CodeType]) -> Iterator[ModuleType]:
+        """The package with some modules' code exchanged; nothing of it stays behind."""
+        self.changed = changed
+        sys.meta_path.insert(0, self)
+        try:
+            yield importlib.import_module(self.NAME)
+        finally:
+            sys.meta_path.remove(self)
+            for name in [n for n in sys.modules if n == self.NAME or n.startswith(f"{self.NAME}.")]:
+                del sys.modules[name]
+
+
+class TooLong(BaseException):
+    """Raised by the alarm; no handler of the checker catches it."""
+
+
+def ring(number: int, frame: FrameType | None) -> None:
+    raise TooLong
+
+
+UNKNOWN = b" " * 1900  # assertions about functions cost as much as a certificate of this size, or more
+
+
+class Battery:
+    """Named questions to a checker's package, each of which returns nothing or raises; the latest to notice first."""
+
+    def __init__(self, questions: dict[str, Callable[[Any], None]]) -> None:
+        self.questions = dict(questions)
+        self.order = sorted(
+            questions, key=lambda name: len(getattr(questions[name], "data", UNKNOWN))
+        )  # cheap ones first
+
+    def noticed(self, copies: Copies, changed: dict[str, CodeType]) -> str | None:
+        """The first question whose answer changes; None if none does."""
+        before = signal.signal(signal.SIGALRM, ring)
+        name = "import"
+        try:
+            signal.setitimer(signal.ITIMER_REAL, SECONDS)
+            with copies.imported(changed) as package:
+                for name in self.order:
+                    signal.setitimer(signal.ITIMER_REAL, SECONDS)
+                    self.questions[name](package)
+            return None
+        except (Exception, TooLong):
+            return name
+        finally:
+            signal.setitimer(signal.ITIMER_REAL, 0)
+            signal.signal(signal.SIGALRM, before)
+            if name in self.questions:
+                self.order.remove(name)
+                self.order.insert(0, name)
+
+
+# (module, function, expression, what it became): why no verdict, place or reason changes
+EQUIVALENT: dict[Key, str] = {
+    ("theorems", "magnitude", "abs(line.concludes['upper'])", "line.concludes['upper']"):
+        "a line concludes lower <= upper: where upper is below 0, the magnitude of lower is the larger one",
+    ("results", "Results.route", "k >= 1", "k > 1"):
+        "a bound is there only if the proved gain is below 1, and what is attained is at most what is proved",
+    ("results", "Results.count", "after >= error", "after > error"): (
+        "an error that stands still is given up at the largest number of steps as well"
+    ),
+    ("ranges", "Evaluator.__init__", "op == 'mark'", "op != 'mark'"):
+        "terms that no variable moves have the same jet whether they are worked out once or for every box",
+    ("ranges", "Evaluator.term", "payload != self.by", "payload == self.by"):
+        "a mark is the name a derivative is taken by; below it nothing has a derivative by that name, so dg is empty",
+    ("ranges", "Evaluator.corner", "side > 0", "side >= 0"): "a side is 1 or -1",
+    ("ranges", "Evaluator.taken", "side > 0", "side >= 0"): "a side is 1 or -1",
+    ("ranges", "face", "side > 0", "side >= 0"): "a side is 1 or -1",
+    ("ranges", "Evaluator.derivatives", "n > 1", "n >= 1"): "a power that is a term has an exponent of at least 2",
+    ("ranges", "Evaluator.derivatives", "n > 2", "n >= 2"): "the power 0 of an interval is 1",
+    ("ranges", "Evaluator.cell", "len(corners) // 2", "-(-len(corners) // 2)"): "a cell has an even number of corners",
+    ("ranges", "second_order", "j > i", "j >= i"): "j == i is the branch before",
+    ("ranges", "second_order", "j > i", "j <= i"): "the other half of a symmetric table",
+    ("exact", "Exact.power", "low <= 0 <= high", "low < 0 <= high"): "at low = 0 the least magnitude is 0 as well",
+    ("exact", "Exact.power", "low <= 0 <= high", "low <= 0 < high"): "at high = 0 the least magnitude is 0 as well",
+    ("exact", "Exact.power", "abs(high)", "high"):
+        "only where the exponent is even: a negative high is the least magnitude, and its power has the same value",
+    **{("reals", "Scaled.mul", f"{x} {sign}= 0", f"{x} {sign} 0"): "a product with an end at 0 is 0 whichever other end is taken"
+       for x, sign in (("p", ">"), ("r", ">"), ("s", ">"), ("q", "<"), ("s", "<"), ("r", "<"))},
+    ("reals", "Scaled.div", "s < 0", "s <= 0"): "a divisor that ends at 0 is refused, turned round or not",
+    ("reals", "Scaled.div", "p >= 0", "p > 0"): "0 is divided: the quotient is 0 whichever end divides",
+    ("reals", "Scaled.div", "q >= 0", "q > 0"): "0 is divided: the quotient is 0 whichever end divides",
+    ("reals", "Scaled._rising_odd", "a[0] < a[1]", "a[0] <= a[1]"): "both ends of a point are the same",
+    ("reals", "Scaled._exp", "10 * whole > 7 * LARGEST", "10 * whole >= 7 * LARGEST"):
+        "exp of 14000 is beyond the limit, and refused when it is held",
+    ("reals", "magnitude", "low >= 0", "low > 0"): "at low = 0 the other branch gives the same pair",
+    ("reals", "sine_of", "r < 0", "r <= 0"): "sin(n pi/2) is sin((2 - n) pi/2), and worked out alike",
+    ("reals", "arc_of_inverse.part", "(a + b) // 2", "-(-(a + b) // 2)"): "a sum is exact wherever it is halved",
+    ("reals", "arc_of_inverse", "p // ((n * n).bit_length() - 1)", "-(-p // ((n * n).bit_length() - 1))"):
+        "one term more than are needed moves the sum by less than a unit",
+}  # fmt: skip
+
+
+@dataclass(frozen=True)
+class Tally:
+    """What became of one module's mutants."""
+
+    module: str
+    mutants: int
+    killed: int
+    equivalents: tuple[Key, ...]
+    survivors: tuple[Mutant, ...]
+    stale: tuple[Key, ...]  # explained as equivalent, and noticed all the same
+
+
+def campaign(copies: Copies, battery: Battery, module: str, chosen: Sequence[Mutant]) -> Tally:
+    """Every one of the chosen mutants put to the battery."""
+    equal, survivors, stale = list[Key](), list[Mutant](), list[Key]()
+    for mutant in chosen:
+        by = battery.noticed(copies, {module: mutant.code()})
+        if by is None and mutant.key in EQUIVALENT:
+            equal.append(mutant.key)
+        elif by is None:
+            survivors.append(mutant)
+        elif mutant.key in EQUIVALENT:
+            stale.append(mutant.key)
+    killed = len(chosen) - len(equal) - len(survivors)
+    return Tally(module, len(chosen), killed, tuple(equal), tuple(survivors), tuple(stale))
+
+
+def table(tallies: Sequence[Tally]) -> str:
+    """One line a module, then what is left to be explained or was explained in vain."""
+    lines = [f"{'module':<12}{'mutants':>9}{'killed':>9}{'equivalent':>12}{'survivors':>11}"]
+    for t in tallies:
+        lines.append(f"{t.module:<12}{t.mutants:>9}{t.killed:>9}{len(t.equivalents):>12}{len(t.survivors):>11}")
+    lines += [f"survivor: {m}" for t in tallies for m in t.survivors]
+    lines += [f"no equivalent: {': '.join(key)}" for t in tallies for key in t.stale]
+    return "\n".join(lines)
