@@ -164,7 +164,7 @@ seconds = 20
     return Case(text, {"g.csv": rows} if uses else {}, corner, split, moving, step, round(low, 3), round(high, 3), aim)
 
 
-def run(seed: int, tally: Tally, trajectories: int = 84, length: int = 210) -> None:
+def run(seed: int, tally: Tally, trajectories: int = 100, length: int = 210) -> None:
     """Proves one claim and simulates against it. Raises AssertionError where anything proved is left."""
     c = case(seed)
     results = proved(c.text, data=c.data).results

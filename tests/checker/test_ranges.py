@@ -48,10 +48,10 @@ def test_every_form_contains_the_samples(expression: str, function: object, by: 
             T, v = np.meshgrid(*[np.linspace(float(a), float(b), 41) for a, b in box], indexing="ij")
             if by:
                 h = 1e-6
-                values = (function(v + h, T) - function(v - h, T)) / (2 * h)  # type: ignore[operator]
+                values = (function(v + h, T) - function(v - h, T)) / (2 * h)  # type: ignore[operator]  # a table of functions
                 slack = 1e-7
             else:
-                values, slack = function(v, T), 1e-12  # type: ignore[operator]
+                values, slack = function(v, T), 1e-12  # type: ignore[operator]  # a table of functions
             found = {}
             for form in "dcms":
                 try:

@@ -5,7 +5,6 @@ from __future__ import annotations
 from collections.abc import Mapping
 from dataclasses import dataclass
 from fractions import Fraction
-from functools import reduce
 from itertools import pairwise
 
 from .constants import rational
@@ -201,7 +200,10 @@ class Scope:
             elif node.op == "clip":
                 done.append(g.add("min", g.add("max", args[0], args[1]), args[2]))
             elif node.op in ("min", "max"):
-                done.append(reduce(lambda a, b, op=node.op: g.add(op, a, b), args))  # type: ignore[misc]  # op is bound
+                total = args[0]
+                for a in args[1:]:
+                    total = g.add(node.op, total, a)
+                done.append(total)
             else:
                 done.append(g.add(node.op, *args))
         return done[-1]

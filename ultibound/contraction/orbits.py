@@ -16,7 +16,7 @@ from ..bounding.intervals import Floats
 from ..claim.obligations import Obligation
 from .samples import combinations
 
-STEPS = 40
+STEPS = 30
 LONGEST_PERIOD = 4
 SETTLE = 400
 MOST_HELD = 27
