@@ -91,6 +91,34 @@ def test_a_requirement_that_always_holds_and_one_that_does_not() -> None:
     assert verdicts(results) == ["proved", "refuted", "proved"]
 
 
+def test_requirements_over_ranges_of_their_own() -> None:
+    """(1 − κ)v + d: k = max |1 − κ| over the gains, ε = max |d|, each requirement over its own ranges."""
+    rows = [
+        ("gain <= 0.6", "kappa = [0.4, 0.6]", "proved"), ("gain <= 0.59", "kappa = [0.4, 0.6]", "refuted"), ("bound(v) <= 0.4", "d = [-0.2, 0.2]", "proved"),
+        ("bound(v) < 0.4", "d = [-0.2, 0.2]", "refuted"), ("radius(v) >= 2", "v = [-2, 2]", "proved"), ("steps(v, 1.9, 0.5) <= 4", "v = [-2, 2]", "proved"),
+        ("settles", "kappa = [1.95, 1.99]", "undecided"), ("gain < 1", "kappa = [1.5, 2.5]", "refuted"), ("push(v) >= 1.5", "v = [-2, 2]", "proved"),
+    ]  # fmt: skip
+    requirements = "".join(f'[[require]]\nthat = "{that}"\nover = {{ {over} }}\n' for that, over, _ in rows)
+    text = f"""format = 1
+[gains]
+kappa = 0.5
+[state]
+v = [-1, 1]
+[uncertain]
+d = [-0.1, 0.1]
+[next]
+v = "v - kappa*v + d"
+[target]
+v = 0
+[[require]]
+that = "gain <= 0.5"
+{requirements}"""
+    results = proved(text).results
+    assert verdicts(results) == ["proved", *(v for _, _, v in rows)]
+    assert ends(results["gain"]) == (Fraction(1, 2), Fraction(1, 2))
+    assert ends(results["requirements"][1]["value"]) == (Fraction(3, 5), Fraction(3, 5))
+
+
 def gaits(spacing: float) -> str:
     """reach(v) = v − sin(2v)/2 on a grid, to nine places."""
     nodes = [round(-0.6 + spacing * k, 6) for k in range(round(1.2 / spacing) + 1)]

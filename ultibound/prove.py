@@ -7,29 +7,27 @@ certificate is checked again from its bytes before anyone sees it.
 from __future__ import annotations
 
 import time
-from collections.abc import Callable, Mapping
 from fractions import Fraction
-from math import prod
 
 from .bounding.defined import undefined_point
 from .bounding.evaluate import to_float
 from .certificate.certificate import Certificate, sealed
 from .certificate.enclosing import Encloser, Proved, Watch
+from .certificate.explaining import Explained
 from .certificate.lines import Writer, downward, upward
 from .certificate.remarks import STOPS, Remarks, Search
 from .certificate.results import assembled
 from .checker import Verdict, check
+from .checker.derive import Derivation
+from .checker.derive import varied as statement_varied
 from .checker.results import Results
 from .checker.rules import Rejected
 from .checker.theorems import levels, movement, sharpest
 from .claim import Bad, Claim, ClaimError
 from .claim.constants import constant
-from .claim.obligations import RANGED, Domain, Obligations, not_yet
-from .contraction import enough_radius
-from .contraction.budget import budget, narrowed, told
+from .claim.obligations import RANGED, Domain, Obligations, not_yet, varied
 from .contraction.curve import Profile, inward
 from .contraction.orbits import Steering, orbits, slow_path
-from .contraction.samples import ends_of
 
 SHARPER = 1e-2  # factor on the gap when an undecided requirement is pursued
 FINEST = 1e-11
@@ -39,7 +37,6 @@ SPARE = 0.01  # share of a smaller ball's radius left free
 ROUGH, QUICK, FEW, MOST = 3e-2, 8, 1, 60  # gap, leaves a shell and shells of a rough curve; shells of a sharp one
 TRIED = 4  # orbits, the furthest first
 REACH = 10_000  # steps of the longest path
-QUICKLY, MOST_EXPLAINED = 400, 500  # leaves of an estimate, and cells beyond which nothing is explained
 
 
 class InternalError(Exception):
@@ -57,9 +54,10 @@ def prove(claim: Claim, watch: Watch | None = None) -> Certificate:
     if problem is not None:
         raise ClaimError.of(claim.place, *problem.split(": ", 1))
     try:
-        undefined = undefined_point(claim)
-        if undefined is not None:
-            raise ClaimError.of(claim.place, *undefined)
+        for c in (claim, *(varied(claim, n) for n in apart(claim))):
+            undefined = undefined_point(c)
+            if undefined is not None:
+                raise ClaimError.of(claim.place, *undefined)
         return _proved(claim, watch or (lambda stage, leaves, high: None))
     except Bad as why:
         raise ClaimError.of(claim.place, "", str(why)) from None
@@ -86,11 +84,18 @@ def _proved(claim: Claim, watch: Watch) -> Certificate:
     return certificate
 
 
+def apart(claim: Claim) -> list[int]:
+    """Requirements whose `over` asks for a set and routes of their own."""
+    return [n for n, r in enumerate(claim.requirements, 1) if r.over and r.kind not in RANGED]
+
+
 def _best(whole: Attempt) -> Attempt:
     """The attempt itself, or one on a smaller ball where nothing larger is kept and that decides no less."""
     if whole.smaller is None or whole.ranges.interrupted:
         return whole
-    attempt = Attempt(whole.claim, whole.gap, whole.until, whole.watch, whole.sharp, whole.smaller)
+    attempt = Attempt(
+        whole.claim, whole.gap, whole.until, whole.watch, whole.sharp, whole.smaller, whole.variant, whole.derivation
+    )
     return attempt if attempt.results.settled and attempt.decided >= whole.decided else whole
 
 
@@ -112,23 +117,36 @@ class Attempt:
     """One pass through the proof at one gap.
 
     `sharp`: the error curve is followed to the gap, not just roughly. `within`: a radius smaller than the largest.
+    `variant`, `derivation`: one requirement over ranges of its own, and what the checker derives for it.
     """
 
     def __init__(
-        self, claim: Claim, gap: float, until: float, watch: Watch, sharp: bool, within: Fraction | None = None
+        self,
+        claim: Claim,
+        gap: float,
+        until: float,
+        watch: Watch,
+        sharp: bool,
+        within: Fraction | None = None,
+        variant: int = 0,
+        derivation: Derivation | None = None,
     ) -> None:
         self.claim, self.gap, self.until, self.watch = claim, gap, until, watch
         self.sharp, self.within = sharp, within
-        self.obligations, self.writer = Obligations(claim), Writer(claim)
+        self.variant, self.derivation = variant, derivation
+        self.obligations, self.writer = Obligations(claim), Writer(claim, derivation)
         self.ranges = Encloser(claim, self.obligations.graph, self.writer, gap, until, watch)
         self.near_region = False
         self.smaller: Fraction | None = None
         self.moved = 0.0  # how far held quantities move the target in a step
         self.pairs: dict[str, int] = {}
         self._prove()
+        for number in () if variant else apart(claim):
+            self._over(number)
         self.results = Results(self.writer.proof)
         state = Search(self.ranges.limits, self.ranges.interrupted, self.near_region)
-        remarks = Remarks(claim, self.obligations, self.results, state, self._enough, self._explain).all()
+        told = Explained(self.obligations, self.ranges, self.results, self.moved)
+        remarks = Remarks(claim, self.obligations, self.results, state, told).all()
         self.pursue = any(p for _, p in remarks)
         waiting = {
             r.kind
@@ -162,8 +180,16 @@ class Attempt:
             self._orbit(invariant)
             self._paths(invariant, target.lower if target.lower == target.upper else None)
         for number, r in enumerate(self.claim.requirements, 1):
-            if r.kind in RANGED:
+            if r.kind in RANGED and not self.variant:
                 self.ranges.enclose(o.requirement(number, domain), on)
+
+    def _over(self, number: int) -> None:
+        """A requirement over ranges of its own: a proof of the same kind, whose lines are taken in."""
+        derivation = Derivation(statement_varied(self.writer.derivation.statement, number))
+        claim = varied(self.claim, number)
+        own = _best(Attempt(claim, self.gap, self.until, self.watch, self.sharp, None, number, derivation))
+        self.ranges.interrupted |= own.ranges.interrupted
+        self.writer.adopt(own.writer, number, own.results.needed)
 
     def _target(self) -> Proved:
         s, claim = self.obligations.state, self.claim
@@ -327,37 +353,3 @@ class Attempt:
                     f"takes the value {value:.6g}{' at ' + where if where else ''}, outside the region "
                     f"[{float(region[0]):.6g}, {float(region[1]):.6g}]; widen the region or narrow the held quantities",
                 )  # fmt: skip
-
-    def _explain(self, enough: Callable[[float, float], bool]) -> str:
-        """What each uncertain quantity costs of the slope route, for people (nothing proved)."""
-        results, o = self.results, self.obligations
-        target, radius = results.centre, results.radius.lower
-        if target.lower is None or target.upper is None or radius is None:
-            return ""
-        kind = "region" if results.kind == "region" else "ball"
-        slope, miss = o.slope(Domain(kind, radius, (target.lower, target.upper))), o.miss()
-        if prod(len(v.cells) for v in slope.variables) > MOST_EXPLAINED:
-            return ""
-
-        def estimate(shares: Mapping[str, float]) -> tuple[float, float]:
-            found = [self.ranges.search(narrowed(x, shares), True, COARSE, cells=QUICKLY) for x in (slope, miss)]
-            k, rest = (max(abs(f.upper), abs(f.lower)) for f in found)
-            return k, rest + self.moved
-
-        met = {v.name: v for x in (slope, miss) for v in x.variables if v.name in self.claim.uncertain}
-        costs = budget(estimate, sorted(met), enough)
-        spans = {n: ends_of(v) for n, v in met.items() if not v.listed}
-        return told(costs, *estimate({}), spans)
-
-    def _enough(self) -> float | None:
-        """An estimate of the radius that would carry a bound, for a region too small (nothing proved)."""
-        results = self.results
-        if results.residual.upper is None or results.gain.upper is None or self.ranges.interrupted:
-            return None
-        target = (results.centre.lower or Fraction(0), results.centre.upper or Fraction(0))
-
-        def gain(radius: float) -> float:
-            found = self.ranges.search(self.obligations.slope(Domain("ball", Fraction(radius), target)), True, 1e-2)
-            return max(abs(found.upper), abs(found.lower))
-
-        return enough_radius(to_float(results.radius.lower or Fraction(0)), gain, to_float(results.residual.upper))

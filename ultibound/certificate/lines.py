@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Mapping, Sequence
+from dataclasses import replace
 from fractions import Fraction
 from itertools import product
 from typing import Any
@@ -30,8 +31,9 @@ IRRATIONAL = frozenset(
 class Writer:
     """Lines of one proof, each with the number it got; domains are those the checker derives."""
 
-    def __init__(self, claim: Claim) -> None:
-        self.derivation = Derivation(read_statement(claim.text, claim.settings, claim.data))
+    def __init__(self, claim: Claim, derivation: Derivation | None = None) -> None:
+        """`derivation`: of a requirement with ranges of its own; else of the claim's text."""
+        self.derivation = derivation or Derivation(read_statement(claim.text, claim.settings, claim.data))
         self.proof = Proof(self.derivation)
         self.raw: list[dict[str, Any]] = []
 
@@ -179,13 +181,28 @@ class Writer:
 
     def pruned(self, needed: set[int]) -> list[dict[str, Any]]:
         """The lines that later lines or results rest on, numbered anew."""
+        kept = self._kept(needed)
+        number = {old: new for new, old in enumerate(kept, 1)}
+        return [{**self.raw[n - 1], "uses": [number[u] for u in self.raw[n - 1]["uses"]]} for n in kept]
+
+    def adopt(self, other: Writer, variant: int, needed: set[int]) -> None:
+        """Appends what a requirement with ranges of its own rests on, from the lines of its own proof."""
+        number: dict[int, int] = {}
+        for old in other._kept(needed):
+            raw, line = other.raw[old - 1], other.proof.lines[old]
+            uses = [number[u] for u in raw["uses"]]
+            self.raw.append({**raw, "proves": f"over[{variant}]:{raw['proves']}", "uses": uses})
+            number[old] = len(self.raw)
+            self.proof.lines[len(self.raw)] = replace(line, variant=variant, uses=tuple(uses))
+        self.proof.variants[variant] = other.derivation
+
+    def _kept(self, needed: set[int]) -> list[int]:
         waiting, kept = list(needed), set(needed)
         while waiting:
             fresh = set(self.raw[waiting.pop() - 1]["uses"]) - kept
             kept |= fresh
             waiting += fresh
-        number = {old: new for new, old in enumerate(sorted(kept), 1)}
-        return [{**self.raw[n - 1], "uses": [number[u] for u in self.raw[n - 1]["uses"]]} for n in sorted(kept)]
+        return sorted(kept)
 
     def _evaluator(self, proves: str, bits: int, on: int | None) -> tuple[Meaning, Evaluator]:
         meaning = self.derivation.meaning(proves, self.domain(on))

@@ -12,6 +12,7 @@ from ..claim import Claim
 from ..claim.constants import constant
 from ..claim.model import Requirement
 from ..claim.obligations import RANGED, Obligations
+from .explaining import Explained
 
 NEARLY = Fraction(97, 100)  # share of a bound without attained end that a smaller gap may yet gain
 STOPS = {
@@ -33,14 +34,13 @@ class Search:
 
 @dataclass(frozen=True)
 class Remarks:
-    """Remarks on the requirements of a claim; `enough` estimates the radius that would carry a bound."""
+    """Remarks on the requirements of a claim."""
 
     claim: Claim
     obligations: Obligations
     results: Results
     search: Search
-    enough: Callable[[], float | None]
-    explain: Callable[[Callable[[float, float], bool]], str]  # what costs how much, and what would do
+    told: Explained
 
     def all(self) -> list[tuple[str | None, bool]]:
         """A remark (or none) and whether to pursue, a requirement."""
@@ -64,7 +64,11 @@ class Remarks:
             if self.search.interrupted:
                 parts.append("interrupted")
             pursue = self.open(number)
-            if not results.settled:
+            if r.over and not ranged:
+                parts.append("over these ranges neither lines nor points decide it")
+                value, c = outcome.value, None if r.constant is None else constant(r.constant, self.claim.values)
+                pursue = value is not None and c is not None and _between(c, value.lower, value.upper)
+            elif not results.settled:
                 parts.append("no set that is mapped into itself was found" + self.size_that_would_do)
             elif results.gain.upper is None and not ranged:
                 parts.append("no finite gain and residual were shown")
@@ -83,8 +87,17 @@ class Remarks:
             elif not parts or pursue:
                 parts.append("the constant lies between what is proved and what is attained")
         if outcome.verdict != "proved" and not self.search.interrupted and not pursue:
-            parts.append(self.cost(r))
+            parts += [self.place(number), self.cost(r)]
         return ("; ".join(p for p in parts if p)[:900] or None), pursue
+
+    def place(self, number: int) -> str:
+        """Where what decides a requirement is largest, as far as points tell."""
+        r, s = self.claim.requirements[number - 1], self.results.state
+        slope, miss = f"slope[{s},{s}]", f"target-miss[{s}]"
+        names = {"gain": [slope], "residual": [miss], "bound": [slope, miss], "settles": [slope, miss]}
+        asked = [f"require[{number}]"] if r.kind in RANGED else [] if r.over else names.get(r.kind, [])
+        found = [(n, at) for n in asked if (at := self.told.where(n))]
+        return "; ".join(f"{n} is largest in size at {at}" for n, at in found)
 
     def cost(self, r: Requirement) -> str:
         """Which uncertain quantities cost how much, for a requirement that slope and residual decide; an estimate."""
@@ -99,7 +112,7 @@ class Remarks:
             "gain": lambda k, e: k < c,
             "residual": lambda k, e: e < c,
         }
-        return self.explain(tests[r.kind]) if r.kind in tests else ""
+        return self.told.costs(tests[r.kind]) if r.kind in tests else ""
 
     def beyond(self, number: int) -> bool:
         """Whether attained values keep the slope route from ever proving an upper limit."""
@@ -140,7 +153,7 @@ class Remarks:
         results = self.results
         if results.residual.upper is None or results.gain.upper is None or self.search.interrupted:
             return ""
-        r = self.enough()
+        r = self.told.enough()
         if r is None:
             return "; no larger region was found that would do"
         low, high = float(results.centre.lower or 0) - r, float(results.centre.upper or 0) + r

@@ -50,6 +50,37 @@ class Domain:
     slope: Fraction = Fraction(0)
 
 
+def varied(statement: Statement, number: int) -> Statement:
+    """The claim with what `over` of a requirement says for its ranges: proofs/obligations.md. Raises Unprovable."""
+    r = statement.requirements[number - 1] if 0 < number <= len(statement.requirements) else None
+    if r is None or not r.over or r.kind in RANGED:
+        raise Unprovable(f"over[{number}]: no requirement that sets ranges for a proof of its own")
+    folded, ends = Derivation(statement).folded(r)
+    stance, uncertain = statement.stances[0], dict(statement.uncertain)
+    states, fixed = dict(stance.states), [dict(statement.constants), dict(statement.gains)]
+    for name, given in r.over.items():
+        if name in folded | ends:
+            raise Unprovable(f"over[{number}]: {name} also sets an exponent or the end of a range")
+        if name in states:
+            states[name] = replace(states[name], range=given)
+        elif name in uncertain:
+            uncertain[name] = replace(uncertain[name], range=given, values=None)
+        elif any(name in f for f in fixed):  # known until now: any value of its range, the same at every step
+            fixed = [{n: e for n, e in f.items() if n != name} for f in fixed]
+            uncertain[name] = Quantity(name, given, None, "", True, None, False)
+        else:
+            raise Unprovable(f"over[{number}]: {name} is set free for a sensitivity only")
+    asked = tuple(replace(x, over={}) if n == number else x for n, x in enumerate(statement.requirements, 1))
+    return replace(
+        statement,
+        constants=fixed[0],
+        gains=fixed[1],
+        uncertain=uncertain,
+        stances=(replace(stance, states=states),),
+        requirements=asked,
+    )
+
+
 class Derivation:
     """Obligations of a one-state claim in closed form."""
 

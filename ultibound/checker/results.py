@@ -46,9 +46,10 @@ class Route:
 class Results:
     """Everything `results` may claim; `needed` collects the lines it rests on."""
 
-    def __init__(self, proof: Proof) -> None:
-        self.proof, self.derivation, self.needed = proof, proof.derivation, set[int]()
-        self.statement, self.state = proof.derivation.statement, proof.derivation.state
+    def __init__(self, proof: Proof, variant: int = 0) -> None:
+        self.proof, self.variant, self.needed = proof, variant, set[int]()
+        self.derivation = proof.about(variant)
+        self.statement, self.state = self.derivation.statement, self.derivation.state
         ball = self.one("largest-ball", "ball")
         if ball is None:
             raise Rejected("the proof has no ball about the target")
@@ -71,7 +72,8 @@ class Results:
         self.gain = self.contraction() if self.reported == "curve" else route.gain
         self.best = self.sharp = self.least_bound()
         self.push = self.pushed()
-        self.requirements = [self.required(n, r) for n, r in enumerate(self.statement.requirements, 1)]
+        numbered = enumerate(self.statement.requirements, 1)
+        self.requirements = [self.required(n, r) for n, r in numbered if not variant or n == variant]
 
     def set_found(self, invariant: Line | None) -> tuple[str | None, bool]:
         """Its kind, and whether requirements may refer to it: proofs/invariant-set.md (4)."""
@@ -168,7 +170,8 @@ class Results:
         return residual
 
     def lines(self, rule: str, proves: str) -> list[tuple[int, Line]]:
-        return [(n, x) for n, x in self.proof.lines.items() if (x.rule, x.proves) == (rule, proves)]
+        wanted = self.variant, rule, proves
+        return [(n, x) for n, x in self.proof.lines.items() if (x.variant, x.rule, x.proves) == wanted]
 
     def one(self, rule: str, proves: str) -> Line | None:
         found = self.lines(rule, proves)
@@ -196,8 +199,10 @@ class Results:
     def required(self, number: int, r: Any) -> Outcome:
         if r.kind in RANGED and r.stance is None:
             return self.ranged(number, r)
-        if r.stance is not None or r.over:
+        if r.stance is not None:
             return Outcome("undecided", None)
+        if r.over:
+            return self.elsewhere(number)
         if r.kind == "settles":
             return self.settles()
         c = constant(r.constant, self.statement.values)
@@ -217,6 +222,14 @@ class Results:
         if found is None and most is not None:
             found = Span(most, None)
         return verdict(proved, opposed(r.relation, Span(None, most), c), found)
+
+    def elsewhere(self, number: int) -> Outcome:
+        """A requirement over ranges of its own: a set, routes and orbits of its own lines."""
+        if not any(x.variant == number for x in self.proof.lines.values()):
+            return Outcome("undecided", None)
+        own = Results(self.proof, number)
+        self.needed |= own.needed
+        return own.requirements[0]
 
     def settles(self) -> Outcome:
         """proofs/ultimate-bound.md; refuted by an orbit that stays as far out as the set reaches."""

@@ -2,13 +2,14 @@
 
 from __future__ import annotations
 
-from dataclasses import dataclass, field
+import re
+from dataclasses import dataclass, field, replace
 from fractions import Fraction
 from itertools import product
 from typing import Any
 
 from .courses import arithmetic, orbit, path, place
-from .derive import Derivation, Unprovable
+from .derive import Derivation, Unprovable, varied
 from .ranges import Evaluator, walk
 from .reals import Undefined
 from .theorems import THEOREMS, Line, Rejected, quantity, shells
@@ -38,6 +39,13 @@ class Proof:
     derivation: Derivation
     lines: dict[int, Line] = field(default_factory=dict)
     leaves: int = 0
+    variants: dict[int, Derivation] = field(default_factory=dict)
+
+    def about(self, variant: int) -> Derivation:
+        """What the claim asks, or what it asks over the ranges of one requirement."""
+        if variant and variant not in self.variants:
+            self.variants[variant] = Derivation(varied(self.derivation.statement, variant))
+        return self.variants[variant] if variant else self.derivation
 
     def add(self, raw: Any) -> None:
         number = len(self.lines) + 1
@@ -54,27 +62,33 @@ class Proof:
         claimed = {key: quantity(text, f"concludes.{key}") for key, text in raw["concludes"].items()}
         used = [self.lines[n] for n in uses]
         witness = raw["witness"]
+        prefix = re.fullmatch(r"over\[([1-9][0-9]{0,3})\]:(.*)", proves, re.ASCII)
+        variant, proves = (int(prefix[1]), prefix[2]) if prefix else (0, proves)
+        if any(line.variant != variant for line in used):
+            raise Rejected("uses: lines about other ranges")
         try:
+            d = self.about(variant)
             if rule in ("range", "point"):
-                line = self.enclosed(rule, proves, tuple(uses), used, witness, claimed)
+                line = self.enclosed(d, rule, proves, tuple(uses), used, witness, claimed)
             elif rule == "shells":
                 if not isinstance(witness["radii"], list):
                     raise Rejected("radii: a list of numbers")
                 radii = tuple(quantity(r, "radii") for r in witness["radii"][:1000])
-                domain = shells(self.derivation, proves, used, radii, quantity(witness["slope"], "slope"))
+                domain = shells(d, proves, used, radii, quantity(witness["slope"], "slope"))
                 line = Line(rule, proves, tuple(uses), claimed, domain)
             elif rule in ("orbit", "path"):
                 course = orbit if rule == "orbit" else path
-                line = Line(rule, proves, tuple(uses), claimed, course(self.derivation, proves, used, witness, claimed))
+                line = Line(rule, proves, tuple(uses), claimed, course(d, proves, used, witness, claimed))
             else:
-                proved = THEOREMS[rule](self.derivation, proves, used, claimed)
+                proved = THEOREMS[rule](d, proves, used, claimed)
                 line = Line(rule, proves, tuple(uses), claimed, proved)
         except (Undefined, Unprovable) as why:
             raise Rejected(str(why)) from None
-        self.lines[number] = line
+        self.lines[number] = replace(line, variant=variant)
 
     def enclosed(
         self,
+        d: Derivation,
         rule: str,
         proves: str,
         uses: tuple[int, ...],
@@ -88,14 +102,12 @@ class Proof:
             if len(used) != 1 or used[0].domain is None:
                 raise Rejected("uses: the one line that gives the set")
             domain = used[0].domain
-        meaning = self.derivation.meaning(proves, domain)
+        meaning = d.meaning(proves, domain)
         if used and proves.startswith(("target", "image")):
             raise Rejected("uses: this obligation rests on no other line")
         precision = arithmetic(witness["bits"])
         names = [v.name for v in meaning.variables]
-        evaluator = Evaluator(
-            self.derivation.terms, meaning.root, meaning.by, names, self.derivation.statement.libraries, precision
-        )
+        evaluator = Evaluator(d.terms, meaning.root, meaning.by, names, d.statement.libraries, precision)
         if rule == "range":
             trees = witness["trees"]
             if not isinstance(trees, list) or not all(isinstance(t, str) for t in trees):

@@ -26,6 +26,7 @@ class Line:
     concludes: Quantities
     domain: Domain | None = None
     on_set: bool = False
+    variant: int = 0  # the requirement whose `over` the line is about, or 0
 
 
 def largest_ball(d: Derivation, proves: str, used: list[Line], claimed: Quantities) -> Domain:

@@ -269,6 +269,26 @@ class Obligations:
         return constant(given.lower, self.claim.values)[1], constant(given.upper, self.claim.values)[0]
 
 
+def varied(claim: Claim, number: int) -> Claim:
+    """The claim with what `over` of a requirement says for its ranges (proofs/obligations.md)."""
+    r = claim.requirements[number - 1]
+    stance, uncertain = claim.stances[0], dict(claim.uncertain)
+    states = {n: replace(q, range=r.over[n]) if n in r.over else q for n, q in stance.states.items()}
+    for name, given in r.over.items():
+        if name in uncertain:
+            uncertain[name] = replace(uncertain[name], range=given, values=None)
+        elif name not in states:  # a constant or gain: unknown now, the same at every step
+            uncertain[name] = Quantity(name, given, held=True)
+    return replace(
+        claim,
+        constants={n: e for n, e in claim.constants.items() if n not in r.over},
+        gains={n: e for n, e in claim.gains.items() if n not in r.over},
+        uncertain=uncertain,
+        stances=(replace(stance, states=states),),
+        requirements=tuple(replace(x, over={}) if x is r else x for x in claim.requirements),
+    )
+
+
 def not_yet(claim: Claim) -> str | None:
     """What of a well-formed claim cannot be proved yet, in one line; None if all of it can."""
     stance = claim.stances[0]
@@ -290,8 +310,6 @@ def not_yet(claim: Claim) -> str | None:
         if unfollowed:
             why = "it also sets an exponent or the end of a range, which is taken at its value"
             return f"require[{number}]: {unfollowed[0]} cannot be followed: {why}; use --set for each value"
-        if r.over and r.kind not in RANGED:
-            return f"require[{number}]: over cannot be used with {r.kind} yet; use it with {', '.join(RANGED)}"
     return None
 
 
