@@ -8,6 +8,7 @@ from __future__ import annotations
 
 import time
 from fractions import Fraction
+from math import prod
 
 from .bounding.defined import undefined_point
 from .bounding.evaluate import to_float
@@ -34,6 +35,7 @@ FINEST = 1e-11
 COARSE = 0.03
 TARGET_GAP = 1e-8  # the largest ball must be known to 1e-6: proofs/invariant-set.md (4)
 SPARE = 0.01  # share of a smaller ball's radius left free
+MOST_ROUGH = 300  # cells of a library over which no curve is followed unless one is asked for
 ROUGH, QUICK, FEW, MOST = 3e-2, 8, 1, 60  # gap, leaves a shell and shells of a rough curve; shells of a sharp one
 TRIED = 4  # orbits, the furthest first
 REACH = 10_000  # steps of the longest path
@@ -258,7 +260,8 @@ class Attempt:
     def _curve(self, domain: Domain, on: int, moves: list[Proved] | None) -> None:
         """Shells of the error curve, the line above them and the sharp bound: proofs/curve.md."""
         o, w, claim = self.obligations, self.writer, self.claim
-        if moves is None:
+        cells = prod(len(v.cells) for v in o.slope(domain).variables)
+        if moves is None or (cells > MOST_ROUGH and not self.sharp):  # over so many even a rough curve would cost more
             return
         (low, high), ends = o.region()[0], domain.target
         outermost = domain.radius if domain.kind == "ball" else max(ends[1] - low, high - ends[0])
