@@ -104,6 +104,7 @@ EXTRA
     ("v/2", "[[require]]\nthat = 'value(log(v))'", "logarithm"),
     ("v/2", "horizon = 2", "horizon"),
     ("v/2", "route = 'sector'", "sector cannot be proved yet"),
+    ("v/2", "route = 'split'", "name it in `correction`"),
 ])  # fmt: skip
 def test_what_cannot_be_used_is_said_in_one_line(next_: str, extra: str, said: str, tmp_path: Path) -> None:
     claim = tmp_path / "c.toml"

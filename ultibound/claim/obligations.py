@@ -302,6 +302,8 @@ def not_yet(claim: Claim) -> str | None:
         return f"horizon: {claim.horizon}; only one step at a time can be proved yet; remove the key"
     if claim.route == "sector":
         return "route: sector cannot be proved yet; use slope, split, curve or best"
+    if claim.route == "split" and not claim.correction:
+        return "route: split tells a correction apart; name it in `correction`, or use another route"
     if any(set(constant(w, claim.values)) != {Fraction(1)} for w in claim.weights.values()):
         return "metric.weights: only the weight 1 can be used with a single state yet; remove the table"
     for number, r in enumerate(claim.requirements, 1):
