@@ -3,12 +3,18 @@
 from __future__ import annotations
 
 import math
+import time
 from fractions import Fraction
 from typing import Any
 
 import pytest
 
 from tests.conftest import ends, proved
+from ultibound.checker import check
+from ultibound.checker.derive import Derivation, Domain, Unprovable, varied
+from ultibound.checker.statement import read_statement
+from ultibound.claim import ClaimError, parse_claim
+from ultibound.prove import Attempt
 
 ROUTES = ("slope", "split", "curve")
 
@@ -152,3 +158,114 @@ def test_the_sharp_bound_is_within_the_gap_of_the_fixed_point() -> None:
     lower, upper = ends(results["sharp_bound"])
     assert low * (1 - 1e-6) <= float(upper) <= low * (1 + 1e-3)
     assert float(lower) > 0.999 * low  # d stays at its end: a fixed point
+
+
+def claim(next_: str, asked: list[str], state: str, top: str = "", more: str = "", target: str = "0") -> Any:
+    requirements = "".join(f"[[require]]\nthat = '{that}'\n" for that in asked)
+    text = (
+        f"format = 1\n{top}[state]\nv = {state}\n{more}[next]\nv = '{next_}'\n[target]\nv = '{target}'\n{requirements}"
+    )
+    return parse_claim(text, {}, {}, "c")
+
+
+def within(c: Any, radius: Fraction) -> dict[str, Any]:
+    """Results of a proof on a ball smaller than the one the claim is about; the checker accepts its certificate."""
+    attempt = Attempt(c, 1e-3, time.monotonic() + 600, lambda *_: None, False, radius)
+    assert check(attempt.certificate.to_bytes()).status == "valid"
+    return attempt.certificate.results
+
+
+def test_a_smaller_ball_refutes_no_push_from_the_region() -> None:
+    """0.9 + (v − 0.9)/100 stays at 0.9, from where a push of 0.15 stays in [−1, 10], though it leaves the ball of radius 1."""
+    c = claim("0.9 + 0.01*(v - 0.9)", ["push(v) >= 0.15"], "[-1, 10]")
+    assert verdicts(within(c, Fraction(1))) == ["undecided"]
+    assert within(c, Fraction(1))["set"]["kind"] == "smaller ball"
+
+
+def test_a_ball_smaller_by_a_millionth_is_another_set() -> None:
+    """0.4 v² on the ball of radius 1: slope 0.8 at its edge, less within any smaller one."""
+    c = claim("0.4*v**2", ["gain <= 0.7999995", "value(next(v)) <= 0.3999996"], "[-1, 3]")
+    assert verdicts(within(c, Fraction(999_999, 1_000_000))) == ["undecided", "undecided"]
+    assert verdicts(proved(c.text).results) == ["refuted", "refuted"]
+
+
+def test_where_any_set_would_do_a_point_of_one_refutes_nothing() -> None:
+    """v/2 + v³: slope 0.8 is kept within 0.3, and exceeded at 1."""
+    c = claim("0.5*v + v**3", ["gain <= 0.8"], "[-1, 1]", "shrink = true\n")
+    assert verdicts(within(c, Fraction(3, 10))) == ["proved"]
+    assert verdicts(proved(c.text).results) == ["undecided"]
+
+
+def test_over_does_not_reach_the_set() -> None:
+    """The ball about k h reaches to ±1 for the claim's k = 1, whatever `over` says of k for the value."""
+    more = "[gains]\nk = 1\n[uncertain]\nh = { range = [-0.5, 0.5], held = true }\n"
+    text = claim("k*h + 1.2*(v - k*h)**3", ["value(v) <= 0.51"], "[-1, 1.2]", "", more, "k*h").text
+    results = proved(text + "over = { k = [0, 0.001] }\n").results
+    assert verdicts(results) == ["refuted"] and float(results["requirements"][0]["value"]["upper"]) >= 1
+
+
+def test_a_target_that_cannot_move_refutes_no_residual() -> None:
+    """h is 0 or 1 and moves by at most 1/2 a step: never. The route's residual is 1, the true one 0."""
+    more = "[uncertain]\nh = { values = [0, 1], held = true, change = 0.5 }\n"
+    results = proved(claim("h*h + 0.1*(v - h*h)", ["residual <= 0.5"], "[-2, 2]", "", more, "h*h").text).results
+    assert verdicts(results) == ["undecided"] and results["residual"] == {"lower": "0", "upper": "1"}
+
+
+@pytest.mark.parametrize("that, over", [
+    ("gain <= 0.5", "{ k = [1, 2] }"), ("sensitivity(v, k) >= 0", "{ d = [0, 1] }"), ("value(v**(2**k)) >= 0", "{ k = [1, 2] }"), ("value(v**2**k) >= 0", "{ k = [1, 2] }"),
+    ("bound(v) <= m", "{ m = [0, 0.5] }"), ("value(v - m) <= -m", "{ m = [0.05, 0.5] }"), ("residual <= 0.1", '{ m = [0.1, 0.5], d = ["-m", "m"] }'),
+    ("steps(v, 1, m) <= 3", "{ m = [0.1, 0.5] }"), ("steps(v, m, 1) <= 3", "{ m = [0.1, 0.5] }"),
+])  # fmt: skip
+def test_names_that_other_texts_are_taken_from_are_not_set_free(that: str, over: str) -> None:
+    """Exponents within exponents, right sides and ends of ranges are taken at the claim's values, in both readers."""
+    text = f"""format = 1
+[gains]
+k = 1
+m = 0.1
+[state]
+v = [0, 1]
+[uncertain]
+d = [0, 0.1]
+[next]
+v = "0.25*v**(2**k) + d + 0*m"
+[target]
+v = 0
+[[require]]
+that = "{that}"
+over = {over}
+"""
+    with pytest.raises(ClaimError, match="cannot be followed"):
+        proved(text)
+    derivation = Derivation(read_statement(text, {}, {}))
+    with pytest.raises(Unprovable):
+        derivation.meaning("require[1]", Domain(False, Fraction(0), (Fraction(0), Fraction(0))))
+        varied(derivation.statement, 1)
+
+
+@pytest.mark.parametrize("that", ["gain <= 0.5", "bound(v) <= m", "residual <= 0.1"])
+def test_nor_for_a_proof_of_their_own(that: str) -> None:
+    text = f'format = 1\n[gains]\nk = 1\nm = 0.1\n[state]\nv = [0, 1]\n[next]\nv = "0.25*v**(2**k) + 0*m"\n[target]\nv = 0\n[[require]]\nthat = "{that}"\nover = {{ k = [1, 2], m = [0, 1] }}\n'
+    with pytest.raises(Unprovable, match="also sets"):
+        varied(read_statement(text, {}, {}), 1)
+
+
+def test_a_corner_may_hold_an_axis_on_a_grid_line() -> None:
+    """m = max(v, 0.3) stands on the node 0.3 for v below it: slopes 1 and 0.1 on its sides both count."""
+    text = """format = 1
+[state]
+v = [-0.5, 0.4]
+[define]
+m = "max(v, 0.3)"
+[[library]]
+file = "g.csv"
+at = { s = "m" }
+[next]
+v = "0.1*v + q"
+[target]
+v = 0.1
+[[require]]
+that = "sensitivity(v, m) <= 0.5"
+"""
+    results = proved(text, data={"g.csv": "s,q\n0,-0.25\n0.3,0.05\n0.4,0.06\n1,0.1\n"}).results
+    low, high = ends(results["requirements"][0]["value"])
+    assert verdicts(results) == ["undecided"] and low <= Fraction(1, 10) and high >= 1

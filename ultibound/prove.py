@@ -35,6 +35,7 @@ FINEST = 1e-11
 COARSE = 0.03
 TARGET_GAP = 1e-8  # the largest ball must be known to 1e-6: proofs/invariant-set.md (4)
 SPARE = 0.01  # share of a smaller ball's radius left free
+LONG_RADIUS = 5_000  # digits
 MOST_ROUGH = 300  # cells of a library over which no curve is followed unless one is asked for
 ROUGH, QUICK, FEW, MOST = 3e-2, 8, 1, 60  # gap, leaves a shell and shells of a rough curve; shells of a sharp one
 TRIED = 4  # orbits, the furthest first
@@ -211,7 +212,9 @@ class Attempt:
             place, name = self.claim.place, f"target.{self.obligations.state}"
             raise ClaimError.of(place, name, "cannot be shown to lie inside the region; widen the region a little")
         radius = min(radius, self.within) if self.within is not None else radius
-        return self.writer.theorem("largest-ball", "ball", [target.line], {"radius": downward(radius)})
+        text = str(radius)  # the largest ball has to be met exactly where it is rational: proofs/invariant-set.md (4)
+        text = text if len(text) < LONG_RADIUS else downward(radius)
+        return self.writer.theorem("largest-ball", "ball", [target.line], {"radius": text})
 
     def _region(self, target: Proved) -> int | None:
         """The line that the region is mapped into itself, where it is: proofs/invariant-set.md (1)."""

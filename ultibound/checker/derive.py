@@ -94,7 +94,8 @@ class Derivation:
             raise Unprovable("only the weight 1 can be checked for a single state")
         self.statement, self.stance, self.terms = statement, stance, Terms()
         (self.state,) = stance.states
-        self.fixed = not self.terms.variables(self.names().of(f"target({self.state})"))
+        target = self.names().of(f"target({self.state})")
+        self.fixed, self.known = not self.terms.variables(target), self.terms.all[target][0] == "number"
 
     def names(self, bound: dict[str, int] | None = None, cut: str = "") -> Names:
         return Names(self.terms, self.statement, bound or {}, cut)
@@ -194,7 +195,7 @@ class Derivation:
         return self.over(root, r.by or "", given, on_set)
 
     def folded(self, r: Requirement) -> tuple[set[str], set[str]]:
-        """Constants and gains that exponents rest on, and that ranges rest on: both are taken at their values."""
+        """Constants and gains that exponents, and that ranges and bounds asked for, rest on: taken at their values."""
         s, fixed = self.stance, {**self.statement.constants, **self.statement.gains}
         texts = [*fixed.values(), *s.define.values(), *s.next.values(), *s.target.values()]
         texts += [e for library in self.statement.libraries for e in library.at]
@@ -202,6 +203,8 @@ class Derivation:
         quantities = [*s.states.values(), *self.statement.uncertain.values()]
         ranges = [e for q in quantities if q.range for e in (q.range.lower, q.range.upper)]
         ranges += [e for q in quantities for e in (*(q.values or ()), *([q.change] if q.change else ()))]
+        ranges += [e for given in r.over.values() for e in (given.lower, given.upper)]
+        ranges += [e for e in (r.constant, r.start, r.end) if e is not None]
         exponents = {n for e in [*texts, *ranges] for x in e.nodes if x.op == "power" for n in (x.name or "").split()}
         ends = {n for e in ranges for n in mentioned(e)}
         for found in (exponents, ends):
@@ -231,7 +234,10 @@ class Derivation:
             else:  # the ball moves with its centre: proofs/invariant-set.md
                 error = f"error({self.state})"
                 given[error] = (-r_, r_), (-r_, r_)
-                centre = self.names(bound).of(f"target({self.state})")
+                held = {
+                    n: k for n, k in bound.items() if n in self.statement.uncertain
+                }  # `over` does not reach the set
+                centre = self.names(held).of(f"target({self.state})")
                 bound[self.state] = self.terms.put("add", (centre, self.terms.put("variable", (), error)))
         return bound, given
 

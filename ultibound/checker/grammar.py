@@ -216,7 +216,8 @@ class Parser:
         low, high = constant(Expression(self.text, raised), self.values)
         if low != high or low.denominator > 2 or abs(low) > 64:
             raise Refused(f"an exponent in {self.text[:60]!r} is no integer or half-integer of at most 64")
-        return self.put("power", (base,), low, " ".join(str(n.name) for n in raised if n.op == "name") or None)
+        inside = " ".join(n.name for n in raised if n.op in ("name", "power") and n.name)  # of exponents within it too
+        return self.put("power", (base,), low, inside or None)
 
     def atom(self) -> int:
         token = self.take()

@@ -58,6 +58,7 @@ class Evaluator:
         self.chosen: dict[int, int] = {}  # the branch each of them is held to
         self.touching = False
         self.axes: dict[int, Evaluator | None] = {}
+        self.bends: dict[int, bool] = {}
         for k in terms.below(root):
             op, args, _ = self.all[k]
             if op == "variable" or op == "mark" or any(a not in self.fixed for a in args):
@@ -288,7 +289,7 @@ class Evaluator:
         ends = [self.exact(x, jet, box) for x, jet in zip(args, axes, strict=True)]
         # where the marked name moves an axis that may stand still on a grid line, both neighbours count: reading.md
         moved = [bool(self.by) and x.d is not None for x in axes]
-        still = [e[0] == e[1] or self.axes[x] is None for x, e in zip(args, ends, strict=True)]
+        still = [e[0] == e[1] or self.axes[x] is None or self.bent(x) for x, e in zip(args, ends, strict=True)]
         wide = [self.touching or all(pair) for pair in zip(moved, still, strict=True)]
         cells = self.branch.get(k) or [met(g, *e, t) for g, e, t in zip(library.grid, ends, wide, strict=True)]
         self.branch[k] = cells
@@ -315,6 +316,12 @@ class Evaluator:
                 if second is not None:
                     jet.dg[i] = second
         return jet
+
+    def bent(self, k: int) -> bool:
+        """Whether a term rests on a corner, which may hold it still on a part of a box."""
+        if k not in self.bends:
+            self.bends[k] = any(self.all[x][0] in ("abs", "min", "max") for x in self.terms.below(k))
+        return self.bends[k]
 
     def exact(self, k: int, jet: Jet, box: Box) -> Ends:
         """Ends of an axis value: exact where it is rational, so that boxes cut at grid lines keep their cells."""

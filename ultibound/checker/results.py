@@ -11,6 +11,7 @@ from .grammar import constant
 from .rules import Line, Proof, Rejected
 from .theorems import PAIRS, levels, movement
 
+ROUNDED = Fraction(1, 10**15)
 SLACK = Fraction(1, 10**6)  # share by which the largest ball may be missed where the target is known to a gap only
 MOST_STEPS = 20_000
 LONG, GRAIN = 2000, 2**160  # bits of a denominator beyond which levels are rounded up, and to what
@@ -49,6 +50,7 @@ class Results:
     def __init__(self, proof: Proof, variant: int = 0) -> None:
         self.proof, self.variant, self.needed = proof, variant, set[int]()
         self.derivation = proof.about(variant)
+        self.any = self.derivation.statement.shrink  # any smaller set would do: points and orbits of one refute nothing
         self.statement, self.state = self.derivation.statement, self.derivation.state
         ball = self.one("largest-ball", "ball")
         if ball is None:
@@ -82,7 +84,10 @@ class Results:
         if invariant.rule == "invariant-region":
             return "region", True
         r, most = self.radius.lower, self.radius.upper
-        largest = r is not None and most is not None and r > 0 and most - r <= SLACK * most
+        # a rational target is known exactly, a fixed one to rounding, one that moves to the gap of its range
+        d = self.derivation
+        slack = 0 if d.known else ROUNDED if d.fixed else SLACK
+        largest = r is not None and most is not None and r > 0 and most - r <= slack * most
         if largest and self.escapes():
             return "ball", True
         return "smaller ball", self.statement.shrink and r is not None and r > 0
@@ -155,7 +160,7 @@ class Results:
 
     def room_left(self, orbit: Line | None) -> Fraction | None:
         """How far a state of an orbit can be pushed at most without leaving the set: proofs/settling.md (2)."""
-        if orbit is None or self.edge is None:
+        if orbit is None or self.edge is None or self.kind == "smaller ball":
             return None
         (low, high), _ = self.derivation.region()
         if self.kind == "region":
@@ -163,10 +168,13 @@ class Results:
         return self.edge - orbit.concludes["distance"]
 
     def moved_at_least(self, residual: Fraction | None) -> Fraction | None:
-        """The residual surely reached: miss of the target and how far held quantities surely move it."""
+        """The residual surely reached: miss of the target, and how far one step can surely move it: attained.md (3)."""
         for h in self.derivation.moving():
-            moved = far(self.attained(f"target-slope[{self.state},{h}]"))
-            residual = None if residual is None or moved is None else residual + moved * self.derivation.change(h)[0]
+            line = self.one("range", f"target-slope[{self.state},{h}]")
+            if residual is None or line is None or self.derivation.statement.uncertain[h].values is not None:
+                continue
+            least = max(line.concludes["lower"], -line.concludes["upper"], Fraction(0))
+            residual += least * self.derivation.change(h)[0]
         return residual
 
     def lines(self, rule: str, proves: str) -> list[tuple[int, Line]]:
@@ -221,7 +229,8 @@ class Results:
         proved = self.whole and found is not None and compared(r.relation, Span(None, found.upper), c)
         if found is None and most is not None:
             found = Span(most, None)
-        return verdict(proved, opposed(r.relation, Span(None, most), c), found)
+        final = r.kind == "residual" or not self.any
+        return verdict(proved, final and opposed(r.relation, Span(None, most), c), found)
 
     def elsewhere(self, number: int) -> Outcome:
         """A requirement over ranges of its own: a set, routes and orbits of its own lines."""
@@ -235,14 +244,14 @@ class Results:
         """proofs/ultimate-bound.md; refuted by an orbit that stays as far out as the set reaches."""
         r = self.radius.lower
         ok = self.whole and self.best is not None and less(self.best.upper, r)
-        beyond = self.orbit is not None and self.edge is not None and self.orbit >= self.edge
+        beyond = self.orbit is not None and self.edge is not None and self.orbit >= self.edge and not self.any
         return verdict(ok, beyond, self.best)
 
     def gained(self, r: Any, c: tuple[Fraction, Fraction]) -> Outcome:
         """Refuted only where no route is left that might have a smaller gain: proofs/attained.md (3)."""
         asked = self.statement.route
         span = self.routes.get(asked, Route()).gain if asked in ("slope", "split") else self.contraction()
-        final = asked in ("slope", "split") or not self.statement.correction
+        final = not self.any and (asked in ("slope", "split") or not self.statement.correction)
         proved = self.whole and compared(r.relation, Span(None, span.upper), c)
         return verdict(proved, final and opposed(r.relation, Span(None, span.lower), c), span)
 
@@ -252,7 +261,7 @@ class Results:
             return Outcome("undecided", None)
         proved = self.settled and self.push is not None and less(c[1], self.push.lower)
         span = self.push if self.push is not None else None if self.room is None else Span(None, self.room)
-        return verdict(proved, opposed(r.relation, Span(self.room, None), c), span)
+        return verdict(proved, not self.any and opposed(r.relation, Span(self.room, None), c), span)
 
     def stepped(self, number: int, r: Any, c: tuple[Fraction, Fraction]) -> Outcome:
         """proofs/settling.md (1): steps after which the error stays within `to`, from any start within `from`."""
@@ -313,7 +322,7 @@ class Results:
         c = zero or (constant(r.constant, self.statement.values) if r.constant is not None else None)
         if c is not None:
             proved = proved and value is not None and compared(r.relation, value, c)
-            if opposed(r.relation, taken, c):
+            if opposed(r.relation, taken, c) and not (self.any and (line is None or line.on_set)):
                 return Outcome("refuted", value, taken)
         return Outcome("proved" if proved else "undecided", value, taken)
 

@@ -176,7 +176,8 @@ class Parser:
         p = self.exponent(Expression(self.text, tuple(raised)))
         if p.denominator > 2 or abs(p) > MAX_POWER:
             raise Bad(f"{self.where()}: an exponent must be an integer or half-integer of at most {MAX_POWER}")
-        return self._add("power", base, value=p, name=" ".join(str(n.name) for n in raised if n.op == "name") or None)
+        inside = [n.name for n in raised if n.op in ("name", "power") and n.name]  # of exponents within it too
+        return self._add("power", base, value=p, name=" ".join(inside) or None)
 
     def _atom(self) -> int:
         place = self.where()

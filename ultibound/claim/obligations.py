@@ -201,7 +201,10 @@ class Obligations:
             else:
                 # the ball moves with the target: proofs/invariant-set.md, sheared set
                 ranges[f"error({s})"] = (-r, r), (-r, r)
-                about = self._scope(bound).name(f"target({s})")
+                kept = {
+                    n: gate for n, gate in bound.items() if n in self.claim.uncertain
+                }  # `over` does not reach the set
+                about = self._scope(kept).name(f"target({s})")
                 bound[s] = g.add("add", about, g.add("variable", name=f"error({s})"))
         return bound, ranges
 
@@ -310,7 +313,7 @@ def not_yet(claim: Claim) -> str | None:
         folded, ends = _folded(claim, r)
         unfollowed = sorted(({r.by or ""} & folded) | (set(r.over) & (folded | ends)))
         if unfollowed:
-            why = "it also sets an exponent or the end of a range, which is taken at its value"
+            why = "it also sets an exponent, the end of a range or the bound asked for, which is taken at its value"
             return f"require[{number}]: {unfollowed[0]} cannot be followed: {why}; use --set for each value"
     return None
 
@@ -322,6 +325,8 @@ def _folded(claim: Claim, r: Requirement) -> tuple[set[str], set[str]]:
     spans = [*s.states.values(), *claim.uncertain.values()]
     ranges = [e for q in spans if q.range is not None for e in (q.range.lower, q.range.upper)]
     ranges += [e for q in spans for e in (*(q.values or ()), q.change) if e is not None]
+    ranges += [e for given in r.over.values() for e in (given.lower, given.upper)]
+    ranges += [e for e in (r.constant, r.start, r.end) if e is not None]
     texts = [*fixed.values(), *s.define.values(), *s.next.values(), *s.target.values(), *ranges]
     texts += [e for lib in claim.libraries for e in lib.at]
     texts += [e for e in (r.expression, r.left, r.right) if e is not None]
