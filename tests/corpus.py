@@ -527,3 +527,119 @@ for text in ("1e9999", "-1e9999", "exp(1000)", "sin(1e300)", "kappa*pi"):
 for text in ("1e9999*1e9999", "exp(3000)", "sin(1e1000)", "- - - -1e9999", f"{HUGE}*v"):
     add(False, f"require value(v) <= {text}", require(f"value(v) <= {text}"))
 add(False, "require value of a long number", require(f"value({WHOLE} + v)"))
+
+# one beside another is not one within another; what is met exactly
+for name, text in (
+    ("parentheses", "+".join(["(v)"] * 70)),
+    ("calls", "+".join(["abs(v)"] * 70)),
+    ("minus signs", "*".join(["-v"] * 70)),
+    ("powers", "+".join(["v**2"] * 70)),
+    ("targets", "+".join(["target(v)"] * 70)),
+):
+    add(True, f"70 {name} side by side", swap("v/2 + foot", text))
+for text, well in (("v**64", True), ("v**-64", True), ("v**65", False), ("v**-65", False), ("v**(-129/2)", False)):
+    add(well, f"exponent {text}", swap("v/2 + foot", text))
+for limit in (2047, 2048):  # 64 times the bits of the base, at most 2**17
+    text = f"((2**50)**40*2**{limit - 2000})**64"
+    add(limit == 2047, f"a power of 64 times {limit + 1} bits", BASE.replace("g = 9.81", f'g = 9.81\nc = "{text}"'))
+add(True, "one cell", f"{BASE}[effort]\ncells = 1\n")
+UNTIL = swap('duration = "T"', 'until = "x"\nwithin = [0, 0.5]', DYNAMICS)
+add(True, "touchdown from 0 on", UNTIL)
+add(False, "touchdown at one time", swap("[0, 0.5]", "[0.5, 0.5]", UNTIL))
+add(False, "touchdown at one time spelled twice", swap("[0, 0.5]", '["pi/9", "pi/9"]', UNTIL))
+ONE_AXIS = f'{BASE}[library]\nfile = "a.csv"\nat = {{ speed = "v" }}\n'
+add(True, "one axis", ONE_AXIS, {"a.csv": "speed,reach\n0,0\n1,0.1\n"})
+add(False, "one axis alone", ONE_AXIS, {"a.csv": "speed\n0\n1\n"})
+OWN = "dynamics = { duration = 0.3, start = { x = 0 }, rate = { x = 1 } }\n"
+EVERY = swap('then = "right"\n', f'then = "right"\n{OWN}', swap('then = ["left"', f'{OWN}then = ["left"', STANCES))
+add(True, "dynamics in every stance", EVERY)
+add(False, "dynamics in one stance", swap('then = "right"\n', f'then = "right"\n{OWN}', STANCES))
+SHARED = "[dynamics]\nduration = 0.3\nstart = { x = 0 }\nrate = { x = 1 }\n"
+add(True, "dynamics shared by stances", STANCES + SHARED)
+add(False, "dynamics in every stance and shared", EVERY + SHARED)
+OTHER = OWN.replace("x =", "y =")
+add(False, "dynamics of other states in a stance", EVERY.replace(OWN, OTHER, 1))
+add(True, "points in a text and a comment", top(f'notes = "{"." * 99}"') + f"# {'.' * 99}\n")
+add(True, "points in a list", swap("[0.36, 0.40]", "{ values = [" + "0.5, " * 99 + "] }"))
+add(True, "lists side by side", swap("load = {", "".join(f"u{k} = [0, 1]\n" for k in range(99)) + "load = {"))
+add(False, "a lone surrogate in a text", top('notes = "\ud800"'))
+add(False, "a lone surrogate in a comment", BASE + "# \udfff\n")
+for axis in ("t", "gain", "sin", "2x"):
+    text = swap("speed =", f"{axis} =", ONE_AXIS)
+    add(False, f"an axis named {axis}", text, {"a.csv": f"{axis},reach\n0,0\n1,0.1\n"})
+SECOND = f'{LIBRARY}[[library]]\nfile = "lift.csv"\nat = {{ pace = "v" }}\n'
+TABLES = {"gaits.csv": CSV, "lift.csv": "pace,lift\n0,0\n1,0.1\n"}
+add(True, "two libraries", SECOND, TABLES)
+add(False, "a library read at a column of another", swap('pace = "v"', 'pace = "reach"', SECOND), TABLES)
+add(False, "a correction of lists", top("correction = [[]]"))
+add(False, "what follows a stance, a list of lists", swap('"left", "right"', '"left", []', STANCES))
+add(
+    False,
+    "a range whose ends are too close to be told apart",
+    swap("[0.36, 0.40]", '["pi + (2**-40)**4/2", "pi + (2**-40)**4"]'),
+)
+add(True, "a range of one step of the grid", swap("[0.36, 0.40]", '["pi", "pi + (2**-40)**4"]'))
+add(True, "horizon 64", top("horizon = 64"))
+ALONE = STANCES[: STANCES.index("[stance.right]")] + '[stance.right]\nthen = "left"\ndefine = { side = 1 }\n'
+add(False, "a state of one stance alone", ALONE)
+add(False, "a state of every stance, named as something else", STANCES.replace("vy", "T"))
+add(False, "a continuous state named as something else", DYNAMICS.replace("\nx =", "\nT ="))
+add(
+    False,
+    "no continuous states",
+    DYNAMICS[: DYNAMICS.index("[dynamics.start]")] + "start = {}\nrate = {}\n[next]\nv = 0\n[target]\nv = 0\n",
+)
+add(False, "touchdown not shown to be from 0 on", swap("[0, 0.5]", '["pi - pi", 0.5]', UNTIL))
+for text in (
+    "sensitivity(v, x)",
+    "radius(v, during) > 0.1",
+    "bound(v, during) < 1",
+    "push(v, x) > 1",
+    "push(during) > 1",
+):
+    add(False, f"dynamics, require {text}", DYNAMICS + f'[[require]]\nthat = "{text}"\n')
+for file in ("a\\\\b.csv", "a\\u0007.csv", "a\\u202e.csv", "a//b.csv", "a/../b.csv", "a/"):
+    found = file.encode().decode("unicode_escape")
+    add(False, f"a file named {file}", swap("gaits.csv", file, LIBRARY), {found: CSV})
+add(False, "a column named as a constant", LIBRARY, {"gaits.csv": CSV.replace("reach", "g")})
+add(False, "a column of two libraries", SECOND, {**TABLES, "lift.csv": "pace,reach\n0,0\n1,0.1\n"})
+for text in (
+    "(v v",
+    "(v, 1",
+    "(v 1",
+    "abs(v v",
+    "target(v v",
+    "target(v, v)",
+    "min(v, 1 1",
+    "v**(1/3)",
+    "v**cosh(1e-60)",
+    "v**(pi - pi)",
+    "_v",
+    "v_(1)",
+    "target(1)",
+):
+    add(False, f"next {text}", swap("v/2 + foot", text))
+for text in (
+    "always(v <= 1 1",
+    "always(v <= 1, 1)",
+    "steps(v 1, 1, 1) <= 9",
+    "steps(v, 1, 1 9) <= 9",
+    "bound(v 1 <= 1",
+    "value(v v <= 1",
+    "sensitivity(v v v",
+):
+    add(False, f"require {text}", require(text))
+for before in ("-v", "(v)", "abs(v)", "v**2", "v**-2", "target(v)"):
+    for limit in (64, 65):
+        add(
+            limit == 64,
+            f"{limit} parentheses after {before}",
+            swap("v/2 + foot", f"{before} + {'(' * limit}v{')' * limit}"),
+        )
+for limit in (64, 65):
+    inner = limit - 1
+    add(limit == 64, f"{limit} parentheses of an exponent", swap("v/2 + foot", f"v**{'(' * inner}2{')' * inner}"))
+    add(limit == 64, f"{limit} powers of powers", swap("v/2 + foot", "v" + "**1" * limit))
+for name in ("x", "T", "g", "v", "foot", "gain"):
+    text = f"{BASE}[dynamics]\nduration = 0.3\nstart = {{ {name} = 0 }}\nrate = {{ {name} = 1 }}\n"
+    add(name == "x", f"a continuous state named {name}", text)

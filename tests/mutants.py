@@ -1,9 +1,11 @@
 """Mutants of the checker: one comparison, sign or rounding direction of one module turned at a time.
 
 A check that no test holds to can be lost unseen. So each is turned round in a copy of the package, never in place,
-and a battery (tests/checker/test_boundaries.py) must notice: a certificate of its fixed list then gets another
-verdict, place or reason, or an assertion about one function fails. `EQUIVALENT` lists the turned expressions that
-change no verdict, each with its reason; an entry whose expression is gone, or that the battery notices, is an error.
+and a battery must notice. One of certificates (tests/checker/test_boundaries.py): a certificate of its fixed list then
+gets another verdict, place or reason, or an assertion about one function fails. One of claims, for the modules that
+read them (tests/checker/test_reading.py): a text of the corpus is then accepted, refused or read otherwise, or an
+assertion fails. `EQUIVALENT` lists the turned expressions that change no verdict, each with its reason; an entry whose
+expression is gone, or that the battery notices, is an error.
 """
 
 from __future__ import annotations
@@ -174,17 +176,16 @@ def ring(number: int, frame: FrameType | None) -> None:
     raise TooLong
 
 
-UNKNOWN = b" " * 1900  # assertions about functions cost as much as a certificate of this size, or more
-
-
 class Battery:
-    """Named questions to a checker's package, each of which returns nothing or raises; the latest to notice first."""
+    """Named questions to a checker's package, each of which returns nothing or raises; the latest to notice first.
 
-    def __init__(self, questions: dict[str, Callable[[Any], None]]) -> None:
+    Assertions about functions are taken to cost as much as a certificate or claim of `unknown` bytes, or more.
+    """
+
+    def __init__(self, questions: dict[str, Callable[[Any], None]], unknown: int = 1900) -> None:
         self.questions = dict(questions)
-        self.order = sorted(
-            questions, key=lambda name: len(getattr(questions[name], "data", UNKNOWN))
-        )  # cheap ones first
+        cost = {name: len(getattr(q, "data", " " * unknown)) for name, q in questions.items()}
+        self.order = sorted(questions, key=cost.__getitem__)  # cheap ones first
 
     def noticed(self, copies: Copies, changed: dict[str, CodeType]) -> str | None:
         """The first question whose answer changes; None if none does."""
@@ -245,6 +246,15 @@ EQUIVALENT: dict[Key, str] = {
     ("reals", "arc_of_inverse.part", "(a + b) // 2", "-(-(a + b) // 2)"): "a sum is exact wherever it is halved",
     ("reals", "arc_of_inverse", "p // ((n * n).bit_length() - 1)", "-(-p // ((n * n).bit_length() - 1))"):
         "one term more than are needed moves the sum by less than a unit",
+    ("grammar", "enclosed", "p >= 0", "p > 0"): "the power 0 of an interval is 1, and so is 1 over it",
+    ("numerals", "spelled", "power >= 0", "power > 0"): "10**0 is 1 above the line and below it",
+    ("numerals", "placed", "n < 0", "n <= 0"): "0 has been given back by then",
+    ("numerals", "placed", "power < 0 < point", "power <= 0 < point"): "a power of 0 has been written out by then",
+    ("numerals", "placed", "power < 0", "power <= 0"): "a power of 0 has been written out by then",
+    ("statement", "read_statement", "len(stances) > 1", "len(stances) >= 1"):
+        "a claim with one stance is never longer than the limit of a claim's text, which is below this one",
+    ("tables", "read_library", "set(axes) <= set(header)", "set(axes) < set(header)"):
+        "where the axes are all columns there are, the other half of the condition refuses",
 }  # fmt: skip
 
 

@@ -11,11 +11,11 @@ import random
 
 import pytest
 
-from tests.checker.test_boundaries import CASES
+from tests.checker import test_boundaries, test_reading
 from tests.mutants import EQUIVALENT, Battery, Copies, Mutant, campaign, mutants, table
 
 LONG = os.environ.get("ULTIBOUND_LONG") == "1"
-MODULES = (
+PROOFS = (
     "rules",
     "theorems",
     "courses",
@@ -29,7 +29,8 @@ MODULES = (
     "exact",
     "reals",
 )
-SAMPLE, SEED = 24, 20260101
+READING = ("grammar", "numerals", "statement", "tables", "scope", "command")
+SAMPLE, SEED = 32, 20260101
 MOST_EQUIVALENT = 0.05
 
 
@@ -40,15 +41,15 @@ def copies() -> Copies:
 
 @pytest.fixture(scope="module")
 def found(copies: Copies) -> dict[str, list[Mutant]]:
-    return {m: mutants(m, copies.source[m]) for m in MODULES}
+    return {m: mutants(m, copies.source[m]) for m in PROOFS + READING}
 
 
 @pytest.fixture(scope="module")
-def battery(copies: Copies) -> Battery:
-    """What notices nothing about the unchanged copy."""
-    found = Battery(CASES)
-    assert found.noticed(copies, {}) is None
-    return found
+def batteries(copies: Copies) -> dict[str, Battery]:
+    """Of each module: what notices nothing about the unchanged copy."""
+    proofs, reading = Battery(test_boundaries.CASES), Battery(test_reading.CASES, 400)
+    assert proofs.noticed(copies, {}) is None and reading.noticed(copies, {}) is None
+    return dict.fromkeys(PROOFS, proofs) | dict.fromkeys(READING, reading)
 
 
 def test_each_equivalent_stands_in_the_source(found: dict[str, list[Mutant]]) -> None:
@@ -64,16 +65,17 @@ def test_each_change_is_a_change(found: dict[str, list[Mutant]]) -> None:
         assert several and all(m.key[2] != m.key[3] for m in several)
 
 
-def test_a_sample_is_noticed(copies: Copies, found: dict[str, list[Mutant]], battery: Battery) -> None:
+def test_a_sample_is_noticed(copies: Copies, found: dict[str, list[Mutant]], batteries: dict[str, Battery]) -> None:
     rng = random.Random(SEED)
     every = [m for several in found.values() for m in several if m.key not in EQUIVALENT]
-    missed = [m for m in rng.sample(every, SAMPLE) if battery.noticed(copies, {m.key[0]: m.code()}) is None]
+    chosen = rng.sample(every, SAMPLE)
+    missed = [m for m in chosen if batteries[m.key[0]].noticed(copies, {m.key[0]: m.code()}) is None]
     assert not missed, f"seed {SEED}: no check notices\n" + "\n".join(map(str, missed))
 
 
 @pytest.mark.skipif(not LONG, reason="some minutes: ULTIBOUND_LONG=1")
-def test_all_are_noticed(copies: Copies, found: dict[str, list[Mutant]], battery: Battery) -> None:
-    tallies = [campaign(copies, battery, module, several) for module, several in found.items()]
+def test_all_are_noticed(copies: Copies, found: dict[str, list[Mutant]], batteries: dict[str, Battery]) -> None:
+    tallies = [campaign(copies, batteries[module], module, several) for module, several in found.items()]
     print(f"\n{table(tallies)}")
     for key in [key for t in tallies for key in t.equivalents]:
         print("equivalent:", *key, "--", EQUIVALENT[key])
