@@ -12,6 +12,8 @@ import pytest
 from tests.conftest import ends, proved
 from ultibound.checker import check
 from ultibound.checker.derive import Derivation, Domain, Unprovable, varied
+from ultibound.checker.ranges import Evaluator
+from ultibound.checker.reals import Scaled, Undefined
 from ultibound.checker.statement import read_statement
 from ultibound.claim import ClaimError, parse_claim
 from ultibound.prove import Attempt
@@ -269,3 +271,38 @@ that = "sensitivity(v, m) <= 0.5"
     results = proved(text, data={"g.csv": "s,q\n0,-0.25\n0.3,0.05\n0.4,0.06\n1,0.1\n"}).results
     low, high = ends(results["requirements"][0]["value"])
     assert verdicts(results) == ["undecided"] and low <= Fraction(1, 10) and high >= 1
+
+
+def test_a_smaller_ball_proves_no_push_of_another_set() -> None:
+    """The region is kept and holds an orbit at 9.2, from where a push of 1 leaves it; within 2 of the target all is calm."""
+    c = claim("0.5*v + clip(2*(v-3), 0, 4.6)", ["push(v) >= 1", "steps(v, 1, 0.3) <= 2"], "[-10, 10]")
+    assert verdicts(within(c, Fraction(2))) == ["undecided", "proved"]
+    assert verdicts(proved(c.text).results)[0] == "refuted"
+
+
+@pytest.mark.parametrize("next_", ["0.5*v*(1/v)**0", "0.5*v + 0.1*sqrt(v - 5)**0", "0.5*v + log(v)**(1 - 1)"])
+def test_the_power_nought_asks_for_its_base(next_: str) -> None:
+    """An expression that is undefined on the region is not made defined by an exponent of 0."""
+    with pytest.raises(ClaimError, match="not defined"):
+        proved(claim(next_, ["gain <= 0.5"], "[-1, 1]").text)
+    derivation = Derivation(read_statement(claim(next_, ["gain <= 0.5"], "[-1, 1]").text, {}, {}))
+    meaning = derivation.meaning("image[v]", None)
+    evaluator = Evaluator(derivation.terms, meaning.root, "", ["v"], (), Scaled(80))
+    with pytest.raises(Undefined):
+        evaluator.run([(Fraction(-1), Fraction(1))], False)
+
+
+def test_the_power_nought_is_one() -> None:
+    results = outcome("0.5*v + 0.1*(v**0) - 0.1*(2 + v)**0 + 0**0 - 1", ["gain <= 0.5", "residual <= 0"])
+    assert verdicts(results) == ["proved", "proved"]
+
+
+def test_a_weight_is_not_set_free() -> None:
+    text = claim(
+        "0.5*v + d + 0*k", ["residual <= 0.1"], "[-1, 1]", "", "[gains]\nk = 1\n[uncertain]\nd = [-0.1, 0.1]\n"
+    ).text
+    text += 'over = { k = [0.5, 2] }\n[metric]\nkind = "box"\nweights = { v = "k" }\n'
+    with pytest.raises(ClaimError, match="cannot be followed"):
+        proved(text)
+    with pytest.raises(Unprovable, match="also sets"):
+        varied(read_statement(text, {}, {}), 1)

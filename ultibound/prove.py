@@ -332,7 +332,7 @@ class Attempt:
         reach = (
             to_float(domain.radius) if domain.ball else to_float(max(high - domain.target[0], domain.target[1] - low))
         )
-        found = sorted(orbits(self._steering(), [0.3 * reach, -0.3 * reach]), key=lambda x: -x[0])
+        found = sorted(orbits(self._steering(), [0.9 * reach, -0.9 * reach]), key=lambda x: -x[0])
         for _, course in found[:TRIED]:
             if self.writer.orbit(course.start, course.held, course.steps, invariant):
                 return

@@ -2288,7 +2288,9 @@ def terms_and_names(checker: Any) -> None:
         assert t.all[t.put(op, tuple(numbers[a] for a in args))] == ("number", (), value), op
     for op, args in (("sin", (numbers[0],)), ("exp", (t.put("number", (), Q(0)),)), ("add", (numbers[0], v)), ("div", (numbers[0], t.put("number", (), Q(0)))), ("sqrt", (numbers[0],))):
         assert t.all[t.put(op, args)] == (op, args, None), op
-    assert t.raised(v, Q(0)) == t.put("number", (), Q(1)) and t.raised(v, Q(1)) == v
+    one, none = (t.put("number", (), Q(n)) for n in (1, 0))
+    assert t.all[t.raised(v, Q(0))] == ("add", (one, t.put("mul", (none, v))), None) and t.raised(v, Q(1)) == v
+    assert t.raised(none, Q(0)) == one
     square = t.raised(v, Q(2))
     assert t.all[square] == ("power", (v,), 2) and t.all[t.raised(square, Q(3))] == ("power", (square,), 3)
     assert t.all[t.raised(v, Q(-2))] == ("div", (t.put("number", (), Q(1)), square), None)

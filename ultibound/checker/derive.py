@@ -204,7 +204,7 @@ class Derivation:
         ranges = [e for q in quantities if q.range for e in (q.range.lower, q.range.upper)]
         ranges += [e for q in quantities for e in (*(q.values or ()), *([q.change] if q.change else ()))]
         ranges += [e for given in r.over.values() for e in (given.lower, given.upper)]
-        ranges += [e for e in (r.constant, r.start, r.end) if e is not None]
+        ranges += [e for e in (r.constant, r.start, r.end) if e is not None] + list(self.statement.weights.values())
         exponents = {n for e in [*texts, *ranges] for x in e.nodes if x.op == "power" for n in (x.name or "").split()}
         ends = {n for e in ranges for n in mentioned(e)}
         for found in (exponents, ends):

@@ -153,7 +153,7 @@ class Results:
 
     def pushed(self) -> Span | None:
         """proofs/settling.md (2): what is left of the radius."""
-        if self.best is None or self.best.upper is None or self.radius.lower is None:
+        if not self.whole or self.best is None or self.best.upper is None or self.radius.lower is None:
             return None
         room = self.radius.lower - self.best.upper
         return Span(room, self.room) if room > 0 else None
@@ -259,7 +259,7 @@ class Results:
         """The largest push is not attained itself, so the constant has to be smaller: proofs/settling.md (2)."""
         if r.during:
             return Outcome("undecided", None)
-        proved = self.settled and self.push is not None and less(c[1], self.push.lower)
+        proved = self.whole and self.push is not None and less(c[1], self.push.lower)
         span = self.push if self.push is not None else None if self.room is None else Span(None, self.room)
         return verdict(proved, not self.any and opposed(r.relation, Span(self.room, None), c), span)
 

@@ -37,8 +37,9 @@ class Terms:
             return self.raised(self.put("sqrt", (base,)), 2 * p)
         if p < 0:
             return self.put("div", (self.put("number", (), Fraction(1)), self.raised(base, -p)))
-        if p == 0:
-            return self.put("number", (), Fraction(1))
+        if p == 0:  # 1, where the base is defined: its own expression stays in the term
+            one, none = (self.put("number", (), Fraction(n)) for n in (1, 0))
+            return one if self.all[base][0] == "number" else self.put("add", (one, self.put("mul", (none, base))))
         known = self.all[base][2]
         if self.all[base][0] == "number" and isinstance(known, Fraction):
             try:

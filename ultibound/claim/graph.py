@@ -50,8 +50,9 @@ class Graph:
             return self.power(self.add("sqrt", base), exponent * 2)
         if exponent < 0:
             return self.add("div", self.number(1), self.power(base, -exponent))
-        if exponent == 0:
-            return self.number(1)
+        if exponent == 0:  # 1, where the base is defined: its own expression stays in the graph
+            one, nothing = self.number(1), self.number(0)
+            return one if self.gates[base].op == "number" else self.add("add", one, self.add("mul", nothing, base))
         known = self.gates[base].value if self.gates[base].op == "number" else None
         if known is not None:
             try:

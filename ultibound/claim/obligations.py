@@ -326,7 +326,7 @@ def _folded(claim: Claim, r: Requirement) -> tuple[set[str], set[str]]:
     ranges = [e for q in spans if q.range is not None for e in (q.range.lower, q.range.upper)]
     ranges += [e for q in spans for e in (*(q.values or ()), q.change) if e is not None]
     ranges += [e for given in r.over.values() for e in (given.lower, given.upper)]
-    ranges += [e for e in (r.constant, r.start, r.end) if e is not None]
+    ranges += [e for e in (r.constant, r.start, r.end) if e is not None] + list(claim.weights.values())
     texts = [*fixed.values(), *s.define.values(), *s.next.values(), *s.target.values(), *ranges]
     texts += [e for lib in claim.libraries for e in lib.at]
     texts += [e for e in (r.expression, r.left, r.right) if e is not None]
