@@ -66,7 +66,9 @@ def test_the_checker_needs_the_standard_library_alone() -> None:
         assert not called & {"float", "eval", "exec"}, path
 
 
-@pytest.mark.xfail(reason="3,404 lines: the reader of the whole claim format alone is some 1,300; to be trimmed")
+@pytest.mark.xfail(
+    reason="3,800 lines, of which 1,113 read the whole claim format; the limit is to be met or stated anew"
+)
 def test_the_checker_can_be_read_in_a_day() -> None:
     lines = sum(len(p.read_text(encoding="utf-8").splitlines()) for p in (PACKAGE / "checker").rglob("*.py"))
     assert 500 < lines <= 3000

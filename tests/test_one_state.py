@@ -152,7 +152,10 @@ def test_the_split_residual_falls_with_the_square_of_the_spacing() -> None:
 
 def test_the_sharp_bound_is_within_the_gap_of_the_fixed_point() -> None:
     """φ(ρ) = tanh(ρ)/2 + ρ²/8 + 1/20 for the map below: its fixed point, by bisection in floating point."""
-    phi = lambda rho: math.tanh(rho) / 2 + rho * rho / 8 + 0.05  # noqa: E731
+
+    def phi(rho: float) -> float:
+        return math.tanh(rho) / 2 + rho * rho / 8 + 0.05
+
     low, high = 0.0, 0.5
     for _ in range(60):
         low, high = ((low + high) / 2, high) if phi((low + high) / 2) > (low + high) / 2 else (low, (low + high) / 2)

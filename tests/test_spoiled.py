@@ -138,7 +138,7 @@ def lines_checked_once() -> Iterator[None]:
     def add(proof: Proof, raw: Any) -> None:
         claim = proof.derivation.statement
         if not proof.lines:
-            proof.history = hashlib.sha256(repr(claim).encode())  # type: ignore[attr-defined]
+            proof.history = hashlib.sha256(repr(claim).encode())  # type: ignore[attr-defined]  # a note of the test's own
         digest_ = getattr(proof, "history", None)
         if digest_ is None:  # lines in the making
             real(proof, raw)
@@ -160,9 +160,9 @@ def lines_checked_once() -> Iterator[None]:
         proof.lines[len(proof.lines) + 1] = found
         proof.leaves += leaves
 
-    Proof.add = add  # type: ignore[method-assign]
+    Proof.add = add  # type: ignore[method-assign]  # put back below
     yield
-    Proof.add = real  # type: ignore[method-assign]
+    Proof.add = real  # type: ignore[method-assign]  # as it was
 
 
 @pytest.fixture(

@@ -2037,7 +2037,7 @@ AT = {"v": Q(3, 4), "T": Q(2, 5)}
 @cache
 def known_jet(step: str) -> dict[str, Q]:
     """Value and derivatives at AT, to 40 digits and more."""
-    import mpmath  # type: ignore[import-untyped]
+    import mpmath  # type: ignore[import-untyped]  # it ships no types
 
     def bezier(u: Any, *points: Any) -> Any:
         while len(points) > 1:

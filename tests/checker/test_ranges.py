@@ -9,7 +9,7 @@ import numpy as np
 import pytest
 
 from ultibound.checker.derive import Derivation, Domain
-from ultibound.checker.ranges import Evaluator, enclose
+from ultibound.checker.ranges import Evaluator, enclose, second_order
 from ultibound.checker.reals import Scaled, Undefined
 from ultibound.checker.statement import read_statement
 
@@ -64,6 +64,14 @@ def test_every_form_contains_the_samples(expression: str, function: object, by: 
             assert widths["c"] <= widths["d"] + 1e-15 and widths["s"] <= widths["m"] + 1e-15
             if width == 0.01 and not by:
                 assert widths["s"] <= 1.2 * (values.max() - values.min()) + 1e-4
+
+
+def test_a_form_that_fails_leaves_nothing_behind() -> None:
+    """A second derivative that is not defined: the next box is again evaluated for its value alone."""
+    e = evaluator("sqrt(v + 1) + T", "")
+    with pytest.raises(Undefined):
+        second_order(e, [(Fraction(1, 10), Fraction(1)), (Fraction(-1), Fraction(1))])
+    assert e.direction is None and not e.second()
 
 
 def test_the_second_order_form_sees_through_cancellation() -> None:

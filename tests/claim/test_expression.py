@@ -8,7 +8,7 @@ from itertools import pairwise
 from typing import Any
 
 import pytest
-from mpmath import mp  # type: ignore[import-untyped]
+from mpmath import mp  # type: ignore[import-untyped]  # it ships no types
 
 from ultibound.claim import Bad
 from ultibound.claim.constants import constant

@@ -427,20 +427,22 @@ def second_order(evaluator: Evaluator, box: Box) -> Interval:
     a, half = evaluator.a, Fraction(1, 2)
     radius = [(y - x) / 2 for x, y in box]
     rest: Interval = evaluator.zero
-    for i, r in enumerate(radius):
-        if r:
+    try:
+        for i, r in enumerate(radius):
+            if not r:
+                continue
             evaluator.direction = i
             row = evaluator.run(box, True).dg
             if evaluator.several or any(len(x) > 1 for x in evaluator.sides.values()):
-                evaluator.direction = None
                 return None
             for j in row:
                 if j == i:
                     rest = a.add(rest, a.mul(row[j], a.between(Fraction(0), half * r * r)))
                 elif j > i:
                     rest = a.add(rest, a.mul(row[j], a.between(-r * radius[j], r * radius[j])))
-    jet = evaluator.run([((x + y) / 2,) * 2 for x, y in box], True, part=True)
-    evaluator.direction = None
+        jet = evaluator.run([((x + y) / 2,) * 2 for x, y in box], True, part=True)
+    finally:
+        evaluator.direction = None
     for i, slope in jet.g.items():
         rest = a.add(rest, a.mul(slope, a.between(-radius[i], radius[i])))
     return a.add(jet.v, rest)
