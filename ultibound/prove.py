@@ -33,9 +33,8 @@ from .contraction.orbits import Steering, orbits, slow_path
 SHARPER = 1e-2  # factor on the gap when an undecided requirement is pursued
 FINEST = 1e-11
 COARSE = 0.03
-TARGET_GAP = 1e-8  # the largest ball must be known to 1e-6: proofs/invariant-set.md (4)
+TARGET_GAP = 1e-8  # suprema are taken over a ball larger by as much: proofs/invariant-set.md (4)
 SPARE = 0.01  # share of a smaller ball's radius left free
-LONG_RADIUS = 5_000  # digits
 MOST_ROUGH = 300  # cells of a library over which no curve is followed unless one is asked for
 ROUGH, QUICK, FEW, MOST = 3e-2, 8, 1, 60  # gap, leaves a shell and shells of a rough curve; shells of a sharp one
 TRIED = 4  # orbits, the furthest first
@@ -166,10 +165,11 @@ class Attempt:
         o, w = self.obligations, self.writer
         target = self._target()
         ball = self._ball(target)
-        radius = w.proof.lines[ball].concludes["radius"]
+        found = w.proof.lines[ball].domain
+        radius, beyond = (found.radius, found.beyond) if found is not None else (Fraction(0), Fraction(0))
         ends = target.lower, target.upper
         region = None if self.within is not None else self._region(target)
-        domain = Domain("ball", radius, ends) if region is None else Domain("region", Fraction(0), ends)
+        domain = Domain("region" if region is not None else "ball", radius, ends, beyond)
         on = ball if region is None else region
         moves = self._moves()
         self._slope(domain, on, moves)
@@ -211,10 +211,10 @@ class Attempt:
         if radius < 0:
             place, name = self.claim.place, f"target.{self.obligations.state}"
             raise ClaimError.of(place, name, "cannot be shown to lie inside the region; widen the region a little")
-        radius = min(radius, self.within) if self.within is not None else radius
-        text = str(radius)  # the largest ball has to be met exactly where it is rational: proofs/invariant-set.md (4)
-        text = text if len(text) < LONG_RADIUS else downward(radius)
-        return self.writer.theorem("largest-ball", "ball", [target.line], {"radius": text})
+        if self.within is not None:
+            concludes = {"radius": downward(min(radius, self.within))}
+            return self.writer.theorem("smaller-ball", "ball", [target.line], concludes)
+        return self.writer.largest_ball(target.line, radius)
 
     def _region(self, target: Proved) -> int | None:
         """The line that the region is mapped into itself, where it is: proofs/invariant-set.md (1)."""
@@ -267,7 +267,7 @@ class Attempt:
         if moves is None or (cells > MOST_ROUGH and not self.sharp):  # over so many even a rough curve would cost more
             return
         (low, high), ends = o.region()[0], domain.target
-        outermost = domain.radius if domain.kind == "ball" else max(ends[1] - low, high - ends[0])
+        outermost = domain.outer if domain.kind == "ball" else max(ends[1] - low, high - ends[0])
         error = o.error(domain, outermost)
         profile = Profile(self.ranges.runner(error, False), error, f"error({o.state})", to_float(self._moved(moves)))
         if domain.kind == "ball":

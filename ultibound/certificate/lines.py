@@ -100,6 +100,17 @@ class Writer:
         self.raw.append(line)
         return len(self.raw)
 
+    def largest_ball(self, target: int, radius: Fraction) -> int:
+        """Appends the ball about the target, the largest in the region as far as points of the target show that."""
+        (low, high), proves = self.derivation.region()[0], self.proof.lines[target].proves
+        points = {n: x.concludes for n, x in self.proof.lines.items() if (x.rule, x.proves) == ("point", proves)}
+        edges = {n: min(high - c["lower"], c["upper"] - low) for n, c in points.items()}
+        if not edges:
+            return self.theorem("smaller-ball", "ball", [target], {"radius": downward(radius)})
+        nearest = min(edges, key=lambda n: edges[n])
+        concludes = {"radius": downward(radius), "outer": upward(edges[nearest])}
+        return self.theorem("largest-ball", "ball", [target, nearest], concludes)
+
     def shells(self, radii: tuple[Fraction, ...], slope: Fraction, on: int) -> int:
         """Appends the line that cuts the set into shells."""
         witness = {"radii": [str(r) for r in radii], "slope": str(slope)}

@@ -41,13 +41,21 @@ class Meaning:
 
 @dataclass(frozen=True)
 class Domain:
-    """The region, or the ball of `radius` about a target known to lie in `target`; `radii`, `slope`: shells, a line."""
+    """The region, or the ball of `radius` about a target known to lie in `target`, or larger by up to `beyond`.
+
+    `radii`, `slope`: shells about the target, a line above the error curve.
+    """
 
     ball: bool
     radius: Fraction
     target: Ends
     radii: tuple[Fraction, ...] = ()
     slope: Fraction = Fraction(0)
+    beyond: Fraction = Fraction(0)
+
+    @property
+    def outer(self) -> Fraction:
+        return self.radius + self.beyond
 
 
 def varied(statement: Statement, number: int) -> Statement:
@@ -95,7 +103,7 @@ class Derivation:
         self.statement, self.stance, self.terms = statement, stance, Terms()
         (self.state,) = stance.states
         target = self.names().of(f"target({self.state})")
-        self.fixed, self.known = not self.terms.variables(target), self.terms.all[target][0] == "number"
+        self.fixed = not self.terms.variables(target)
 
     def names(self, bound: dict[str, int] | None = None, cut: str = "") -> Names:
         return Names(self.terms, self.statement, bound or {}, cut)
@@ -166,10 +174,7 @@ class Derivation:
         s, put, error = self.state, self.terms.put, f"error({self.state})"
         inner, outer = domain.radii[j - 2] if j > 1 else Fraction(0), domain.radii[j - 1]
         target = self.names().of(f"target({s})")
-        x = put("add", (target, put("variable", (), error)))
-        if not domain.ball:
-            low, high = (put("number", (), q) for q in self.region()[0])
-            x = put("min", (put("max", (x, low)), high))
+        x = self.kept(put("add", (target, put("variable", (), error))), domain)
         root = put("sub", (self.names({s: x}).of(f"next({s})"), target))
         meaning = self.over(root, "", {error: ((-outer, outer),) * 2}, True)
         cells = (-outer, -inner), (inner, outer)
@@ -228,18 +233,29 @@ class Derivation:
             bound[name] = self.terms.put("variable", (), name)
             given[name] = self.ends(r)
         if domain.ball and self.state not in over:
-            (low, high), r_ = domain.target, domain.radius
+            # suprema over the outer ball, points in the inner one: proofs/invariant-set.md (4)
+            (low, high), (least, most) = domain.target, self.region()[0]
+            inner, outer = domain.radius, domain.outer
             if self.fixed:
-                given[self.state] = (low - r_, high + r_), (high - r_, low + r_)
+                reach = max(least, low - outer), min(most, high + outer)
+                given[self.state] = reach, (high - inner, low + inner)
             else:  # the ball moves with its centre: proofs/invariant-set.md
                 error = f"error({self.state})"
-                given[error] = (-r_, r_), (-r_, r_)
+                given[error] = (-outer, outer), (-inner, inner)
                 held = {
                     n: k for n, k in bound.items() if n in self.statement.uncertain
                 }  # `over` does not reach the set
                 centre = self.names(held).of(f"target({self.state})")
-                bound[self.state] = self.terms.put("add", (centre, self.terms.put("variable", (), error)))
+                x = self.terms.put("add", (centre, self.terms.put("variable", (), error)))
+                bound[self.state] = self.kept(x, domain)
         return bound, given
+
+    def kept(self, x: int, domain: Domain) -> int:
+        """A state clipped to the region, wherever the set may reach beyond it as it is written."""
+        if domain.ball and not domain.beyond:
+            return x
+        low, high = (self.terms.put("number", (), q) for q in self.region()[0])
+        return self.terms.put("min", (self.terms.put("max", (x, low)), high))
 
     def over(
         self, root: int, by: str = "", given: dict[str, tuple[Ends, Ends]] | None = None, on_set: bool = False

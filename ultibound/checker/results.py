@@ -11,8 +11,6 @@ from .grammar import constant
 from .rules import Line, Proof, Rejected
 from .theorems import PAIRS, levels, movement
 
-ROUNDED = Fraction(1, 10**15)
-SLACK = Fraction(1, 10**6)  # share by which the largest ball may be missed where the target is known to a gap only
 MOST_STEPS = 20_000
 LONG, GRAIN = 2000, 2**160  # bits of a denominator beyond which levels are rounded up, and to what
 
@@ -52,9 +50,10 @@ class Results:
         self.derivation = proof.about(variant)
         self.any = self.derivation.statement.shrink  # any smaller set would do: points and orbits of one refute nothing
         self.statement, self.state = self.derivation.statement, self.derivation.state
-        ball = self.one("largest-ball", "ball")
-        if ball is None:
-            raise Rejected("the proof has no ball about the target")
+        balls = [x for rule in ("largest-ball", "smaller-ball") if (x := self.one(rule, "ball")) is not None]
+        if len(balls) != 1:
+            raise Rejected("the proof has not exactly one ball about the target")
+        (ball,) = balls
         invariant = self.one("invariant-region", "invariant") or self.one("invariant-ball", "invariant")
         self.domain = invariant.domain if invariant is not None else ball.domain
         self.settled = invariant is not None
@@ -62,7 +61,7 @@ class Results:
         asked = self.settled or any(r.kind == "radius" for r in self.statement.requirements)
         self.centre, self.edge = Span(centre["lower"], centre["upper"]), self.reach() if asked else None
         self.radius = Span(ball.concludes["radius"], self.edge)
-        self.kind, self.whole = self.set_found(invariant)
+        self.kind, self.whole = self.set_found(invariant, ball)
         orbit = self.one("orbit", "orbit")
         self.orbit = orbit.concludes["distance"] if orbit is not None else None
         self.room = self.room_left(orbit)
@@ -77,20 +76,16 @@ class Results:
         numbered = enumerate(self.statement.requirements, 1)
         self.requirements = [self.required(n, r) for n, r in numbered if not variant or n == variant]
 
-    def set_found(self, invariant: Line | None) -> tuple[str | None, bool]:
+    def set_found(self, invariant: Line | None, ball: Line) -> tuple[str | None, bool]:
         """Its kind, and whether requirements may refer to it: proofs/invariant-set.md (4)."""
         if invariant is None:
             return None, False
         if invariant.rule == "invariant-region":
             return "region", True
-        r, most = self.radius.lower, self.radius.upper
-        # a rational target is known exactly, a fixed one to rounding, one that moves to the gap of its range
-        d = self.derivation
-        slack = 0 if d.known else ROUNDED if d.fixed else SLACK
-        largest = r is not None and most is not None and r > 0 and most - r <= slack * most
-        if largest and self.escapes():
+        wide = ball.concludes["radius"] > 0
+        if ball.rule == "largest-ball" and wide and self.escapes():
             return "ball", True
-        return "smaller ball", self.statement.shrink and r is not None and r > 0
+        return "smaller ball", self.statement.shrink and wide
 
     def escapes(self) -> bool:
         """Whether a point leaves the region: else no ball is the set (proofs/invariant-set.md (4))."""

@@ -19,7 +19,8 @@ __all__ = ["Line", "Proof", "Rejected", "place", "quantity"]
 SHAPES = {
     "range": (("bits", "trees"), ("lower", "upper")),
     "point": (("at", "bits"), ("lower", "upper")),
-    "largest-ball": ((), ("radius",)),
+    "largest-ball": ((), ("outer", "radius")),
+    "smaller-ball": ((), ("radius",)),
     "invariant-region": ((), ()),
     "invariant-ball": ((), ()),
     "slope": ((), ("gain", "residual")),

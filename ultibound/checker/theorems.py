@@ -30,6 +30,17 @@ class Line:
 
 
 def largest_ball(d: Derivation, proves: str, used: list[Line], claimed: Quantities) -> Domain:
+    """proofs/invariant-set.md (2): points of the target show that no ball larger than `outer` lies in the region."""
+    found = smaller_ball(d, proves, used[:1], claimed)
+    require(proves, "ball", used[1:], [("point", f"target[{d.state}]")] * len(used[1:]))
+    (low, high), _ = d.region()
+    edges = [min(high - x.concludes["lower"], x.concludes["upper"] - low) for x in used[1:]]
+    if not edges or not claimed["outer"] >= min(edges):
+        raise Rejected("outer: larger balls are not shown to leave the region")
+    return replace(found, beyond=max(claimed["outer"] - found.radius, Fraction(0)))
+
+
+def smaller_ball(d: Derivation, proves: str, used: list[Line], claimed: Quantities) -> Domain:
     """proofs/invariant-set.md (2): R is at most the distance of the target from the edge of the region."""
     require(proves, "ball", used, [("range", f"target[{d.state}]")])
     target = used[0].concludes
@@ -52,7 +63,7 @@ def invariant_region(d: Derivation, proves: str, used: list[Line], claimed: Quan
 
 def invariant_ball(d: Derivation, proves: str, used: list[Line], claimed: Quantities) -> Domain:
     """proofs/invariant-set.md (3): k R + residual <= R."""
-    if proves != "invariant" or [x.rule for x in used[:1]] != ["largest-ball"] or len(used) != 2:
+    if proves != "invariant" or [x.proves for x in used[:1]] != ["ball"] or len(used) != 2:
         raise Rejected("invariant rests on the ball, then a gain and residual")
     ball, pair = used
     if pair.rule not in PAIRS or pair.domain != ball.domain or ball.domain is None:
@@ -98,7 +109,7 @@ def shells(d: Derivation, proves: str, used: list[Line], radii: tuple[Fraction, 
         raise Rejected(f"radii: up to {MOST_SHELLS} rising numbers above 0")
     (low, high), _ = d.region()
     if not (
-        radii[-1] == domain.radius if domain.ball else radii[-1] >= max(domain.target[1] - low, high - domain.target[0])
+        radii[-1] == domain.outer if domain.ball else radii[-1] >= max(domain.target[1] - low, high - domain.target[0])
     ):
         raise Rejected("radii: the shells do not cover the set")
     return replace(domain, radii=radii, slope=slope)
@@ -157,6 +168,7 @@ def ultimate_bound(d: Derivation, proves: str, used: list[Line], claimed: Quanti
 
 THEOREMS = {
     "largest-ball": largest_ball,
+    "smaller-ball": smaller_ball,
     "invariant-region": invariant_region,
     "slope": slope,
     "split": split,

@@ -48,14 +48,20 @@ class Obligation:
 
 @dataclass(frozen=True, slots=True)
 class Domain:
-    """The convex set an obligation refers to: the region, or the ball of a radius about the target.
+    """The convex set an obligation refers to: the region, or a ball of a radius about the target.
 
-    `target` is a proved enclosure of the target over all values it may take.
+    `target` is a proved enclosure of the target over all values it may take; where it is known to a gap only, the
+    largest ball may be larger by `beyond`.
     """
 
     kind: str
     radius: Fraction
     target: Ends
+    beyond: Fraction = Fraction(0)
+
+    @property
+    def outer(self) -> Fraction:
+        return self.radius + self.beyond
 
 
 class Obligations:
@@ -136,10 +142,7 @@ class Obligations:
         """F − x* over the part of the set within a radius of the target (an estimate's, not proved as such)."""
         s, g = self.state, self.graph
         target = self._scope({}).name(f"target({s})")
-        x = g.add("add", target, g.add("variable", name=f"error({s})"))
-        if domain.kind == "region":
-            (low, high), _ = self.region()
-            x = g.add("min", g.add("max", x, g.number(low)), g.number(high))
+        x = self._kept(g.add("add", target, g.add("variable", name=f"error({s})")), domain)
         root = g.add("sub", self._scope({s: x}).name(f"next({s})"), target)
         return self._of("error", root, "", {f"error({s})": ((-radius, radius),) * 2})
 
@@ -195,18 +198,28 @@ class Obligations:
             bound[name] = g.add("variable", name=name)
             ranges[name] = self._outer(given), self._inner(given)
         if domain.kind == "ball" and s not in bound:
-            (low, high), r = domain.target, domain.radius
+            # suprema over the outer ball, points in the inner one: proofs/invariant-set.md (4)
+            (low, high), (least, most) = domain.target, self.region()[0]
+            r, far = domain.radius, domain.outer
             if self._fixed_target:
-                ranges[s] = (low - r, high + r), (high - r, low + r)
+                reach = (low - far, high + far) if not domain.beyond else (max(least, low - far), min(most, high + far))
+                ranges[s] = reach, (high - r, low + r)
             else:
                 # the ball moves with the target: proofs/invariant-set.md, sheared set
-                ranges[f"error({s})"] = (-r, r), (-r, r)
+                ranges[f"error({s})"] = (-far, far), (-r, r)
                 kept = {
                     n: gate for n, gate in bound.items() if n in self.claim.uncertain
                 }  # `over` does not reach the set
                 about = self._scope(kept).name(f"target({s})")
-                bound[s] = g.add("add", about, g.add("variable", name=f"error({s})"))
+                bound[s] = self._kept(g.add("add", about, g.add("variable", name=f"error({s})")), domain)
         return bound, ranges
+
+    def _kept(self, x: int, domain: Domain) -> int:
+        """The state x, clipped to the region where the set as written may reach beyond it."""
+        if domain.kind == "ball" and not domain.beyond:
+            return x
+        g, (low, high) = self.graph, self.region()[0]
+        return g.add("min", g.add("max", x, g.number(low)), g.number(high))
 
     def _of(
         self, name: str, root: int, by: str = "", ranges: Mapping[str, tuple[Ends, Ends]] | None = None
