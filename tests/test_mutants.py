@@ -25,6 +25,7 @@ PROOFS = (
     "document",
     "__init__",
     "ranges",
+    "forms",
     "terms",
     "exact",
     "reals",

@@ -1900,7 +1900,7 @@ def encloses(checker: Any, step: str, by: str, box: dict[str, tuple[Any, Any]], 
     sides = [(Q(box[n][0]), Q(box[n][1])) for n in e.names]
     for forms, (low, high) in expected.items():
         for form in forms:
-            found = e.a.ends(checker.ranges.enclose(e, sides, form))
+            found = e.a.ends(checker.forms.enclose(e, sides, form))
             assert found == (Q(low), Q(high)), (step, by, box, form, *map(str, found))
 
 
@@ -1937,20 +1937,20 @@ def forms_of_values(checker: Any) -> None:
             encloses(checker, f"{text} + 0*T", "", {"v": v, "T": t}, {"c": c})
         else:
             e = evaluator(checker, f"{text} + 0*T")
-            found = checker.ranges.enclose(e, [(Q(a), Q(b)) for a, b in (v if n == "v" else t for n in e.names)], "c")
+            found = checker.forms.enclose(e, [(Q(a), Q(b)) for a, b in (v if n == "v" else t for n in e.names)], "c")
             assert found[0] < -Q(1, 2) or found[1] > Q(1, 2), (text, found)
     e = evaluator(checker, "max(v, 1/3) - v", bits=24)  # by exact ends, where the arithmetic rounds them apart
-    found = e.a.ends(checker.ranges.enclose(e, [(Q(1, 3), Q(1))], "c"))
+    found = e.a.ends(checker.forms.enclose(e, [(Q(1, 3), Q(1))], "c"))
     assert -Q(1, 10**5) < found[0] <= 0 <= found[1] < Q(1, 10**5)
-    before = checker.ranges.MOST_BRANCHES
+    before = checker.forms.MOST_BRANCHES
     try:
-        checker.ranges.MOST_BRANCHES = 2
+        checker.forms.MOST_BRANCHES = 2
         encloses(checker, "abs(v) - v", "", {"v": (-1, 2)}, {"d": (-2, 3), "c": (-2, 2)})
-        checker.ranges.MOST_BRANCHES = 1
+        checker.forms.MOST_BRANCHES = 1
         encloses(checker, "abs(v) - v", "", {"v": (-1, 2)}, {"d": (-2, 3), "c": (-2, 3)})
         encloses(checker, "abs(v) - v", "", {"v": (1, 2)}, {"d": (-1, 1), "cms": (0, 0)})
     finally:
-        checker.ranges.MOST_BRANCHES = before
+        checker.forms.MOST_BRANCHES = before
     # a branch that is not defined where it is not taken leaves what needs no branches
     encloses(checker, "1/max(v, 1/2) + v - v", "", {"v": (-1, 1)}, {"d": (-1, 4), "ms": (1, 2)})
     encloses(checker, "abs(v) - v", "", {"v": (1, 2)}, {"d": (-1, 1), "cms": (0, 0)})
@@ -1964,7 +1964,7 @@ def forms_of_values(checker: Any) -> None:
     for form in ("", "D", "dd", "x", "9", "-1"):
         e = evaluator(checker, square)
         with refuses(checker.reals.Undefined, match="unknown form"):
-            checker.ranges.enclose(e, [(Q(0), Q(1))], form)
+            checker.forms.enclose(e, [(Q(0), Q(1))], form)
 
 
 @unit
@@ -2004,7 +2004,7 @@ def forms_of_derivatives(checker: Any) -> None:
             return kept(box, *more, **named)
 
         e.run = run
-        checker.ranges.enclose(e, [(Q(at[0]), Q(at[1]))], "c")
+        checker.forms.enclose(e, [(Q(at[0]), Q(at[1]))], "c")
         assert len(boxes) == runs, (at, boxes)
     # with a single branch, what cannot be held stays refused
     before = checker.exact.LARGEST
@@ -2015,15 +2015,15 @@ def forms_of_derivatives(checker: Any) -> None:
             encloses(checker, "v**4", "v", {"v": (0, 1)}, {"c": (0, 4)})
     finally:
         checker.exact.LARGEST = before
-    before = checker.ranges.MOST_BRANCHES
+    before = checker.forms.MOST_BRANCHES
     try:
-        checker.ranges.MOST_BRANCHES = 2
+        checker.forms.MOST_BRANCHES = 2
         encloses(checker, cancels, "v", {"v": (-1, 1)}, {"cms": (0, 0)})
-        checker.ranges.MOST_BRANCHES = 1
+        checker.forms.MOST_BRANCHES = 1
         encloses(checker, cancels, "v", {"v": (-1, 1)}, {"cms": (-3, 3)})
         encloses(checker, cancels, "v", {"v": (1, 2)}, {"d": (-2, 2), "cms": (0, 0)})
     finally:
-        checker.ranges.MOST_BRANCHES = before
+        checker.forms.MOST_BRANCHES = before
 
 
 JETS = [
@@ -2157,39 +2157,39 @@ def cells_met(checker: Any) -> None:
 @unit
 def trees(checker: Any) -> None:
     """Bisected at the exact middle, the lower half first; nothing is left over or out."""
-    ranges, undefined = checker.ranges, checker.reals.Undefined
+    forms, undefined = checker.forms, checker.reals.Undefined
     e = evaluator(checker, "v - v*v")
     top = ((Q(0), Q(1)),)
     for tree, ends, leaves in (
         ("d", (-1, 1), 1), ("0 d d", ("-1/2", "3/4"), 2), ("000 d d", ("-1/2", "3/4"), 2), ("0 m d", ("-1/2", "3/4"), 2), ("0 d m", ("-1/4", "1/2"), 2), ("0 0 m m m", (0, "1/4"), 3), ("0 m 0 m d", ("-1/4", "7/16"), 3),
     ):
-        found, count = ranges.walk(e, [top], [tree])
+        found, count = forms.walk(e, [top], [tree])
         assert (found, count) == ((Q(ends[0]), Q(ends[1])), leaves), (tree, *map(str, found))
     for tree, reason in (
         ("0 d", "a tree ends before"), ("0", "a tree ends before"), ("d d", "goes on after its last leaf"), ("0 d d d", "goes on after"), ("1 d d", "unknown form '1'"), ("0000 d d", "unknown form '0000'"), ("", "unknown form ''"),
         ("0  d d", "unknown form ''"), ("-0 d d", "unknown form '-0'"), ("٠ d d", "unknown form"), ("+0 d d", "unknown form"),
     ):
         with refuses(undefined, match=reason):
-            ranges.walk(e, [top], [tree])
+            forms.walk(e, [top], [tree])
     for tops, texts_ in (([], []), ([top], []), ([top], ["d", "d"]), ([], ["d"])):
         with refuses(undefined, match=f"{len(texts_)} trees for {len(tops)} cells"):
-            ranges.walk(e, tops, texts_)
-    assert ranges.walk(e, [top, ((Q(1), Q(2)),)], ["m", "m"]) == ((-2, Q(3, 4)), 2)
-    assert ranges.walk(e, [((Q(1), Q(2)),), top], ["m", "m"]) == ((-2, Q(3, 4)), 2)
+            forms.walk(e, tops, texts_)
+    assert forms.walk(e, [top, ((Q(1), Q(2)),)], ["m", "m"]) == ((-2, Q(3, 4)), 2)
+    assert forms.walk(e, [((Q(1), Q(2)),), top], ["m", "m"]) == ((-2, Q(3, 4)), 2)
     two = evaluator(checker, "T*v")
     box = ((Q(0), Q(1)), (Q(0), Q(2)))
-    assert ranges.walk(two, [box], ["1 d d"]) == ((0, 2), 2)
+    assert forms.walk(two, [box], ["1 d d"]) == ((0, 2), 2)
     with refuses(undefined, match="unknown form '2'"):
-        ranges.walk(two, [box], ["2 d d"])
-    before = ranges.DEEPEST
+        forms.walk(two, [box], ["2 d d"])
+    before = forms.DEEPEST
     try:
-        ranges.DEEPEST = 2
-        assert ranges.walk(e, [top], ["0 0 m m 0 m m"])[1] == 4
+        forms.DEEPEST = 2
+        assert forms.walk(e, [top], ["0 0 m m 0 m m"])[1] == 4
         for tree in ("0 0 0 m m m m", "0 m 0 m 0 m m"):
             with refuses(undefined, match="bisected more than 2 times"):
-                ranges.walk(e, [top], [tree])
+                forms.walk(e, [top], [tree])
     finally:
-        ranges.DEEPEST = before
+        forms.DEEPEST = before
 
 
 @unit

@@ -9,7 +9,8 @@ import numpy as np
 import pytest
 
 from ultibound.checker.derive import Derivation, Domain
-from ultibound.checker.ranges import Evaluator, enclose, second_order
+from ultibound.checker.forms import enclose, second_order
+from ultibound.checker.ranges import Evaluator
 from ultibound.checker.reals import Scaled, Undefined
 from ultibound.checker.statement import read_statement
 

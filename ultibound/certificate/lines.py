@@ -11,8 +11,9 @@ from typing import Any
 from ..checker.courses import Course, course_variables, nearest
 from ..checker.derive import Derivation, Domain, Meaning
 from ..checker.exact import Exact
+from ..checker.forms import walk
 from ..checker.numerals import decimal_down, decimal_up
-from ..checker.ranges import Evaluator, walk
+from ..checker.ranges import Evaluator
 from ..checker.reals import Scaled, Undefined
 from ..checker.rules import Line, Proof, Rejected, place
 from ..checker.statement import read_statement

@@ -10,7 +10,8 @@ from typing import Any
 
 from .courses import arithmetic, orbit, path, place
 from .derive import Derivation, Unprovable, varied
-from .ranges import Evaluator, walk
+from .forms import walk
+from .ranges import Evaluator
 from .reals import Undefined
 from .theorems import THEOREMS, Line, Rejected, quantity, shells
 

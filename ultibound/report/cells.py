@@ -9,7 +9,8 @@ from itertools import product
 from ..certificate.certificate import Certificate
 from ..checker.courses import arithmetic
 from ..checker.derive import Derivation
-from ..checker.ranges import Evaluator, walk
+from ..checker.forms import walk
+from ..checker.ranges import Evaluator
 from ..checker.rules import Proof
 from ..checker.statement import read_statement
 
