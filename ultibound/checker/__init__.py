@@ -12,7 +12,8 @@ from collections.abc import Callable
 from dataclasses import dataclass, field
 from typing import Any
 
-from .derive import Derivation, Unprovable
+from .calculus import Unprovable
+from .derive import Derivation
 from .document import Unreadable, digest, read
 from .grammar import Refused
 from .holding import hold

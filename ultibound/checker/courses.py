@@ -7,9 +7,11 @@ from typing import Any
 
 from .derive import Derivation, Domain, Meaning, Ranged
 from .exact import Exact
+from .flows import Flows
+from .numerals import Rejected, quantity
 from .ranges import Box, Ends, Evaluator
 from .reals import Scaled
-from .theorems import Line, Quantities, Rejected, quantity
+from .theorems import Line, Quantities, parted
 
 BITS = (24, 4096)
 LONGEST = 100_000
@@ -43,8 +45,8 @@ def valued(v: Ranged, text: Any) -> Ends:
 class Course:
     """The map followed from an interval of states, step by step, with held and fresh values a witness states."""
 
-    def __init__(self, d: Derivation, witness: dict[str, Any]) -> None:
-        self.d, self.a = d, arithmetic(witness["bits"])
+    def __init__(self, d: Derivation, witness: dict[str, Any], flows: Flows | None) -> None:
+        self.d, self.a, self.flows = d, arithmetic(witness["bits"]), flows
         held = {n for n, q in d.statement.uncertain.items() if q.held}
         self.step, self.away = meanings(d)
         spans = course_variables(d)
@@ -62,7 +64,7 @@ class Course:
 
     def _map(self, m: Meaning) -> Evaluator:
         names = [v.name for v in m.variables]
-        return Evaluator(self.d.terms, m.root, "", names, self.d.statement.libraries, self.a)
+        return Evaluator(self.d.terms, m.root, "", names, self.d.statement.libraries, self.a, self.flows)
 
     def at(self, m: Meaning, x: Ends, values: dict[str, Ends]) -> Ends:
         box = [x if v.name == self.d.state else values[v.name] for v in m.variables]
@@ -111,10 +113,11 @@ def numbers(texts: Any, count: int) -> list[Fraction]:
 
 def orbit(d: Derivation, proves: str, used: list[Line], witness: dict[str, Any], claimed: Quantities) -> Domain | None:
     """proofs/orbit.md (1): the map followed from both ends of an interval brackets a periodic orbit."""
+    used, flows = parted(used)
     if proves != "orbit" or len(used) != 1 or used[0].proves != "invariant":
         raise Rejected("an orbit rests on the invariant set")
     a, b = numbers(witness["start"], 2)
-    course = Course(d, witness)
+    course = Course(d, witness, flows)
     if not a <= b or not course.starts_in(used[0].domain, (a, b)):
         raise Rejected("start: not shown to be in the set")
     states = course.follow((a, b))
@@ -132,10 +135,11 @@ def orbit(d: Derivation, proves: str, used: list[Line], witness: dict[str, Any],
 
 def path(d: Derivation, proves: str, used: list[Line], witness: dict[str, Any], claimed: Quantities) -> Domain | None:
     """proofs/orbit.md (2): a trajectory from a start in the set."""
+    used, flows = parted(used)
     if proves != "path" or len(used) != 1 or used[0].proves != "invariant":
         raise Rejected("a path rests on the invariant set")
     (x,) = numbers(witness["start"], 1)
-    course = Course(d, witness)
+    course = Course(d, witness, flows)
     if not course.starts_in(used[0].domain, (x, x)):
         raise Rejected("start: not shown to be in the set")
     states = course.follow((x, x))

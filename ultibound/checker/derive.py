@@ -8,17 +8,16 @@ from fractions import Fraction
 from itertools import pairwise
 from math import prod
 
+from .calculus import Unprovable
 from .grammar import constant
 from .model import Quantity, Range, Requirement, Statement
+from .motion import PHASE, Motion, copy, grown, landed, motion, supported
+from .names import Names, mentioned
 from .ranges import Ends
-from .terms import Names, Terms, mentioned
+from .terms import Terms
 
 MOST_CELLS = 1_000_000
-RANGED = ("value", "sensitivity", "always")  # requirements that a range proves
-
-
-class Unprovable(Exception):
-    """A well-formed claim, or an obligation, for which this checker has no theorem."""
+RANGED = ("value", "sensitivity", "always", "throughout")  # requirements that a range proves
 
 
 @dataclass(frozen=True)
@@ -94,19 +93,25 @@ class Derivation:
 
     def __init__(self, statement: Statement) -> None:
         stance = statement.stances[0]
-        if len(statement.stances) > 1 or stance.name or stance.dynamics is not None or len(stance.states) != 1:
-            raise Unprovable("only closed-form claims of one state and one stance can be checked")
+        if len(statement.stances) > 1 or stance.name or len(stance.states) != 1:
+            raise Unprovable("only claims of one state and one stance can be checked")
         if statement.horizon != 1 or statement.route == "sector":
             raise Unprovable("only the routes slope, split and curve over one step can be checked")
         if any(set(constant(w, statement.values)) != {Fraction(1)} for w in statement.weights.values()):
             raise Unprovable("only the weight 1 can be checked for a single state")
         self.statement, self.stance, self.terms = statement, stance, Terms()
         (self.state,) = stance.states
+        self.motion: Motion | None = None
+        if stance.dynamics is not None:
+            self.motion = motion(Names(self.terms, statement, {}, ""))
         target = self.names().of(f"target({self.state})")
         self.fixed = not self.terms.variables(target)
 
     def names(self, bound: dict[str, int] | None = None, cut: str = "") -> Names:
-        return Names(self.terms, self.statement, bound or {}, cut)
+        return Names(self.terms, self.statement, bound or {}, cut, self.landed)
+
+    def landed(self, names: Names, root: int, phase: int | None = None) -> int:
+        return root if self.motion is None else landed(names, self.motion, root, phase)
 
     def meaning(self, name: str, domain: Domain | None) -> Meaning:
         """The obligation of that name; the set is needed where the state runs through it."""
@@ -118,7 +123,7 @@ class Derivation:
         if name == f"target-miss[{s}]":
             target = self.names().of(f"target({s})")
             step = self.names({s: target}).of(f"next({s})")
-            return self.over(self.terms.put("sub", (step, target)))
+            return self.over(self.terms.difference(step, target))
         if name in {f"target-slope[{s},{h}]": h for h in self.moving()}:
             held = name.removeprefix(f"target-slope[{s},").removesuffix("]")
             held_ = {h: self.statement.uncertain[h] for h in self.moving()}
@@ -136,6 +141,16 @@ class Derivation:
             return self.shell(domain, int(shell[1]))
         if name == f"line[{s}]" and domain.radii:
             return self.line(domain)
+        support = re.fullmatch(r"support\[([1-9][0-9]{0,3})\]", name)
+        if support and self.motion is not None and int(support[1]) <= len(self.motion.positive):
+            bound, given = self.through(domain, {})
+            phase = self.terms.put("variable", (), PHASE)
+            root = supported(self.names(bound), self.motion, self.motion.positive[int(support[1]) - 1], phase)
+            return self.over(root, "", given, True)
+        if name == f"growth[{s}]" and self.motion is not None:
+            bound, given = self.through(domain, {})
+            phase = self.terms.put("variable", (), PHASE)
+            return self.over(grown(self.names(bound), self.motion, s, phase), "", given, True)
         number = re.fullmatch(r"require\[([1-9][0-9]{0,3})\]", name)
         if number and int(number[1]) <= len(self.statement.requirements):
             return self.required(self.statement.requirements[int(number[1]) - 1], domain)
@@ -165,7 +180,7 @@ class Derivation:
         bound, given = self.through(domain, {})
         names = self.names(bound)
         target = names.of(f"target({s})")
-        far, error = (put("abs", (put("sub", (names.of(x), target)),)) for x in (f"next({s})", s))
+        far, error = (put("abs", (self.terms.difference(names.of(x), target),)) for x in (f"next({s})", s))
         above = put("mul", (put("number", (), domain.slope), error))
         return self.over(put("sub", (far, above)), "", given, True)
 
@@ -175,7 +190,7 @@ class Derivation:
         inner, outer = domain.radii[j - 2] if j > 1 else Fraction(0), domain.radii[j - 1]
         target = self.names().of(f"target({s})")
         x = self.kept(put("add", (target, put("variable", (), error))), domain)
-        root = put("sub", (self.names({s: x}).of(f"next({s})"), target))
+        root = self.terms.difference(self.names({s: x}).of(f"next({s})"), target)
         meaning = self.over(root, "", {error: ((-outer, outer),) * 2}, True)
         cells = (-outer, -inner), (inner, outer)
         variables = [replace(v, cells=cells) if v.name == error else v for v in meaning.variables]
@@ -195,6 +210,10 @@ class Derivation:
             root = self.terms.put("sub", (names.expression(r.left), names.expression(r.right)))
         else:
             root = names.expression(r.expression) if r.expression is not None else names.of(f"next({r.state})")
+        phase = self.terms.put("variable", (), PHASE) if r.kind == "throughout" else None
+        root = self.landed(names, root, phase)
+        if r.by is not None and self.stirred(root, r.by):
+            raise Unprovable(f"{r.by}: a signal's effect within the stance follows it, and may take any course")
         met = self.terms.variables(root)
         on_set = self.state not in r.over and (self.state in met or f"error({self.state})" in met)
         return self.over(root, r.by or "", given, on_set)
@@ -204,6 +223,9 @@ class Derivation:
         s, fixed = self.stance, {**self.statement.constants, **self.statement.gains}
         texts = [*fixed.values(), *s.define.values(), *s.next.values(), *s.target.values()]
         texts += [e for library in self.statement.libraries for e in library.at]
+        if s.dynamics is not None:
+            texts += [*s.dynamics.start.values(), *s.dynamics.rate.values()]
+            texts += [s.dynamics.duration] if s.dynamics.duration is not None else []
         texts += [e for e in (r.expression, r.left, r.right) if e is not None]
         quantities = [*s.states.values(), *self.statement.uncertain.values()]
         ranges = [e for q in quantities if q.range for e in (q.range.lower, q.range.upper)]
@@ -232,6 +254,8 @@ class Derivation:
         for name, r in over.items():
             bound[name] = self.terms.put("variable", (), name)
             given[name] = self.ends(r)
+            if name in self.statement.uncertain or name in self.stance.states:
+                self.kept_by_over(name, given[name][0], domain)
         if domain.ball and self.state not in over:
             # suprema over the outer ball, points in the inner one: proofs/invariant-set.md (4)
             (low, high), (least, most) = domain.target, self.region()[0]
@@ -250,6 +274,43 @@ class Derivation:
                 bound[self.state] = self.kept(x, domain)
         return bound, given
 
+    def supporting(self) -> set[str]:
+        """Names of variables on which rests what has to stay positive throughout a stance."""
+        if self.motion is None:
+            return set()
+        names, phase = self.names(), self.terms.put("variable", (), PHASE)
+        roots = [supported(names, self.motion, k, phase) for k in self.motion.positive]
+        return {n for k in roots for n in self.terms.variables(k)}
+
+    def stirred(self, root: int, by: str) -> bool:
+        """Whether a signal's effect on a state follows a marked name: then no slope by it is known (stance.md (5))."""
+        n = len(self.motion.states) if self.motion is not None else 0
+        for k in self.terms.below(root):
+            op, args, payload = self.terms.all[k]
+            if op == "flow" and int(str(payload).split(" ")[1]) > n:
+                below = {m for a in args for m in self.terms.below(a)}
+                if any(self.terms.all[m][0] == "mark" and self.terms.all[m][2] == by for m in below):
+                    return True
+        return False
+
+    def loose(self) -> bool:
+        """Whether slopes by the state are those at constant signals only."""
+        return self.stirred(self.names(cut=self.state).of(f"next({self.state})"), self.state)
+
+    def kept_by_over(self, name: str, wanted: Ends, domain: Domain) -> None:
+        """Refuses ranges that would lead a ball's centre or a stance where the claim does not, and those of signals."""
+        quantity = self.stance.states.get(name) or self.statement.uncertain[name]
+        if quantity.within:
+            raise Unprovable(f"{name}: a signal within the stance keeps its range")
+        if name in self.supporting():
+            low, high = self.range(quantity)[1] if quantity.values is None else (Fraction(1), Fraction(0))
+            if (name == self.state and domain.ball) or not (low <= wanted[0] and wanted[1] <= high):
+                raise Unprovable(f"{name}: the stance is not shown to last beyond the range of the claim")
+        if domain.ball and name in self.terms.variables(self.names().of(f"target({self.state})")):
+            low, high = self.range(quantity)[1] if quantity.values is None else (Fraction(1), Fraction(0))
+            if not (low <= wanted[0] and wanted[1] <= high):
+                raise Unprovable(f"{name}: the set moves with it, and is known for its own range only")
+
     def kept(self, x: int, domain: Domain) -> int:
         """A state clipped to the region, wherever the set may reach beyond it as it is written."""
         if domain.ball and not domain.beyond:
@@ -261,8 +322,9 @@ class Derivation:
         self, root: int, by: str = "", given: dict[str, tuple[Ends, Ends]] | None = None, on_set: bool = False
     ) -> Meaning:
         variables = []
+        given = {PHASE: ((Fraction(0), Fraction(1)),) * 2, **self.signals(root), **(given or {})}
         for name in self.terms.variables(root):
-            if given and name in given:
+            if name in given:
                 outer, inner = given[name]
             else:
                 quantity = self.stance.states.get(name) or self.statement.uncertain[name]
@@ -276,6 +338,21 @@ class Derivation:
         if prod(len(v.cells) for v in variables) > MOST_CELLS:
             raise Unprovable(f"more than {MOST_CELLS} combinations of library cells and listed values")
         return Meaning(root, by, variables, on_set)
+
+    def signals(self, root: int) -> dict[str, tuple[Ends, Ends]]:
+        """Signals within the stance as continuous states answer them: proofs/stance.md (5)."""
+        found: dict[str, tuple[Ends, Ends]] = {}
+        if self.motion is None:
+            return found
+        met = set(self.terms.variables(root))
+        if any(self.statement.uncertain[n].within for n in met if n in self.statement.uncertain):
+            raise Unprovable("a signal within the stance stands outside the rates")
+        for d in self.motion.signals:
+            outer, (low, high) = self.range(self.statement.uncertain[d])
+            names = {copy(d, x) for x in self.motion.states} & met
+            inner = (low, high) if len(names) == 1 else ((low + high) / 2,) * 2  # one constant signal serves them all
+            found |= dict.fromkeys(names, (outer, inner))
+        return found
 
     def lines(self, name: str, root: int) -> set[Fraction]:
         """Grid lines of the axes that read a variable directly: its range is cut there."""

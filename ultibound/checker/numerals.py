@@ -5,6 +5,7 @@ from __future__ import annotations
 import re
 from decimal import Decimal
 from fractions import Fraction
+from typing import Any
 
 CLAIM_DIGITS = 4000
 CERTIFICATE_DIGITS = 50_000
@@ -19,6 +20,10 @@ class Refused(ValueError):
         text = super().__str__()
         text = text if len(text) <= 400 else f"{text[:200]} … {text[-200:]}"
         return "".join(c if c.isprintable() else "\ufffd" for c in text)
+
+
+class Rejected(Exception):
+    """A line that does not hold, and why."""
 
 
 class Number(str):
@@ -107,3 +112,12 @@ def placed(n: int, power: int) -> str:
         return f"{sign}0.{'0' * -point}{digits}"
     tail = f".{digits[1:]}" if len(digits) > 1 else ""
     return f"{sign}{digits[0]}{tail}e{power + len(digits) - 1}"
+
+
+def quantity(text: Any, place_: str) -> Fraction:
+    if not isinstance(text, str):
+        raise Rejected(f"{place_}: a proved number is written as text")
+    try:
+        return read_number(text)
+    except ValueError as why:
+        raise Rejected(f"{place_}: {why}") from None

@@ -6,10 +6,10 @@ proofs/forms.md (5) and (6), proofs/corners.md, proofs/reading.md.
 from __future__ import annotations
 
 from bisect import bisect_left, bisect_right
-from collections.abc import Sequence
+from collections.abc import Callable, Sequence
 from fractions import Fraction
 from itertools import product
-from typing import Any
+from typing import Any, Protocol
 
 from .exact import Exact
 from .model import Library
@@ -23,6 +23,18 @@ Interval = Any  # a pair of whole numbers (Scaled) or of fractions (Exact)
 Arithmetic = Any  # Scaled or Exact
 RATIONAL = frozenset(["number", "variable", "mark", "neg", "add", "sub", "mul", "div", "power", "abs", "min", "max"])
 SMOOTH = frozenset(["sqrt", "exp", "log", "sin", "cos", "tan", "asin", "acos", "atan", "sinh", "cosh", "tanh"])
+
+
+class Trajectory(Protocol):
+    """Enclosures of a fundamental solution and its derivatives by time and parameters (`flows.py`)."""
+
+    grids: tuple[tuple[Fraction, ...] | None, ...]
+
+    def reached(self, at: Sequence[Ends], cells: Sequence[range]) -> list[range]: ...
+
+    def partial(
+        self, i: int, j: int, orders: Sequence[int], at: Sequence[Ends], cells: Sequence[range], a: Arithmetic
+    ) -> Interval: ...
 
 
 class Jet:
@@ -40,9 +52,17 @@ class Evaluator:
     """A term, or its derivative by a marked name, over boxes of named variables."""
 
     def __init__(
-        self, terms: Terms, root: int, by: str, names: list[str], libraries: Sequence[Library], arithmetic: Arithmetic
+        self,
+        terms: Terms,
+        root: int,
+        by: str,
+        names: list[str],
+        libraries: Sequence[Library],
+        arithmetic: Arithmetic,
+        flows: Trajectory | None = None,
     ) -> None:
         self.terms, self.all, self.root, self.by, self.names, self.a = terms, terms.all, root, by, names, arithmetic
+        self.flows = flows
         self.columns = {c: library for library in libraries for c in library.columns}
         self.zero, self.one = arithmetic.number(Fraction(0)), arithmetic.number(Fraction(1))
         self.nodes: dict[tuple[str, int], Interval] = {}
@@ -55,7 +75,6 @@ class Evaluator:
         self.chosen: dict[int, int] = {}  # the branch each of them is held to
         self.touching = False
         self.axes: dict[int, Evaluator | None] = {}
-        self.bends: dict[int, bool] = {}
         for k in terms.below(root):
             op, args, _ = self.all[k]
             if op == "variable" or op == "mark" or any(a not in self.fixed for a in args):
@@ -129,6 +148,8 @@ class Evaluator:
             return self.corner(k, first, jets[args[1]], 1 if op == "max" else -1, box)
         if op == "reading":
             return self.reading(k, str(payload), args, [jets[x] for x in args], box)
+        if op == "flow":
+            return self.flow(k, str(payload), args, [jets[x] for x in args], box)
         if op in SMOOTH:
             return self.chain(first, op, 0)
         raise Undefined(f"{op} has no rule here")
@@ -283,15 +304,7 @@ class Evaluator:
     def reading(self, k: int, column: str, args: tuple[int, ...], axes: list[Jet], box: Box) -> Jet:
         """A multilinear reading and its derivatives, by the chain rule over its axes (proofs/reading.md)."""
         library = self.columns[column]
-        ends = [self.exact(x, jet, box) for x, jet in zip(args, axes, strict=True)]
-        # where the marked name moves an axis that may stand still on a grid line, both neighbours count: reading.md
-        moved = [bool(self.by) and x.d is not None for x in axes]
-        still = [e[0] == e[1] or self.axes[x] is None or self.bent(x) for x, e in zip(args, ends, strict=True)]
-        wide = [self.touching or all(pair) for pair in zip(moved, still, strict=True)]
-        cells = self.branch.get(k) or [met(g, *e, t) for g, e, t in zip(library.grid, ends, wide, strict=True)]
-        self.branch[k] = cells
-        several = any(len(c) > 1 for c in cells)
-        self.several |= several
+        ends, cells = self.across(k, library.grid, args, axes, box)
 
         def partial(*by: int) -> Interval:
             orders = [int(j in by) for j in range(len(axes))]
@@ -299,26 +312,69 @@ class Evaluator:
             return min(p[0] for p in parts), max(p[1] for p in parts)
 
         jet = Jet(partial())
+        # of degree one in each axis: no second derivative by the same
+        self.composed(jet, axes, lambda *by: partial(*by) if len(set(by)) == len(by) else None, not several(cells))
+        return jet
+
+    def flow(self, k: int, entry: str, args: tuple[int, ...], axes: list[Jet], box: Box) -> Jet:
+        """An entry of the fundamental solution, by the chain rule over time and parameters (proofs/trajectory.md)."""
+        flows = self.flows
+        if flows is None:
+            raise Undefined("no trajectory is proved")
+        i, j = map(int, entry.split(" "))
+        ends, cells = self.across(k, (None, *flows.grids), args, axes, box)
+        cells = [cells[0], *flows.reached(ends[1:], cells[1:])]
+
+        def partial(*by: int) -> Interval:
+            return flows.partial(i, j, [by.count(x) for x in range(len(axes))], ends, cells, self.a)
+
+        jet = Jet(partial())
+        self.composed(jet, axes, partial, not several(cells))
+        return jet
+
+    def composed(self, jet: Jet, axes: list[Jet], partial: Callable[..., Interval], smooth: bool) -> None:
+        """Derivatives of a function of several arguments from its own, None standing for zero."""
         active = [j for j, x in enumerate(axes) if x.g or x.d is not None]
         slope = {j: partial(j) for j in active}
         jet.d = self.plus(*(self.prod(slope[j], axes[j].d) for j in active))
         for i in {i for x in axes for i in x.g}:
             jet.g[i] = self.plus(*(self.prod(slope[j], axes[j].g.get(i)) for j in active))
-            if self.second() and not several:
+            if self.second() and smooth:
                 parts = [self.prod(slope[j], axes[j].dg.get(i)) for j in active]
                 for j, m in product(active, active):
-                    if j != m and axes[j].d is not None and i in axes[m].g:
+                    if axes[j].d is not None and i in axes[m].g:
                         parts.append(self.prod(partial(j, m), axes[j].d, axes[m].g[i]))
                 second = self.plus(*parts)
                 if second is not None:
                     jet.dg[i] = second
-        return jet
 
-    def bent(self, k: int) -> bool:
-        """Whether a term rests on a corner, which may hold it still on a part of a box."""
-        if k not in self.bends:
-            self.bends[k] = any(self.all[x][0] in ("abs", "min", "max") for x in self.terms.below(k))
-        return self.bends[k]
+    def across(
+        self, k: int, grids: Sequence[tuple[Fraction, ...] | None], args: tuple[int, ...], axes: list[Jet], box: Box
+    ) -> tuple[list[Ends], list[range]]:
+        """Ends of each argument, and the cells of its grid that are met; one where it has none."""
+        ends = [self.exact(x, jet, box) for x, jet in zip(args, axes, strict=True)]
+        # where the marked name moves an axis that may stand still on a grid line, both neighbours count: reading.md
+        moved = [bool(self.by) and x.d is not None for x in axes]
+        still = [e[0] == e[1] or not self.strays(x) for x, e in zip(args, ends, strict=True)]
+        wide = [self.touching or all(pair) for pair in zip(moved, still, strict=True)]
+        cells = self.branch.get(k) or [
+            range(1) if g is None else met(g, *e, t) for g, e, t in zip(grids, ends, wide, strict=True)
+        ]
+        self.branch[k] = cells
+        self.several |= several(cells)
+        return ends, cells
+
+    def strays(self, k: int) -> bool:
+        """Whether an axis surely moves wherever its box has extent: a variable times and plus numbers."""
+        op, args, payload = self.all[k]
+        if op == "mark" or op == "neg":
+            return self.strays(args[0])
+        numbers = [x for x in args if self.all[x][0] == "number"]
+        if op in ("add", "sub", "mul", "div") and len(numbers) == 1:
+            scaled = op in ("mul", "div")
+            if not (scaled and (self.all[numbers[0]][2] == 0 or (op == "div" and numbers[0] == args[0]))):
+                return self.strays(next(x for x in args if x != numbers[0]))
+        return op == "variable" and payload is not None
 
     def exact(self, k: int, jet: Jet, box: Box) -> Ends:
         """Ends of an axis value: exact where it is rational, so that boxes cut at grid lines keep their cells."""
@@ -357,7 +413,11 @@ class Evaluator:
         return min(c[0] for c in corners), max(c[1] for c in corners)
 
 
-def met(grid: tuple[Fraction, ...], low: Fraction, high: Fraction, touching: bool) -> range:
+def several(cells: Sequence[range]) -> bool:
+    return any(len(c) > 1 for c in cells)
+
+
+def met(grid: Sequence[Fraction], low: Fraction, high: Fraction, touching: bool) -> range:
     """Ranks of the cells that [low, high] needs: those with g_i < high and g_{i+1} > low (proofs/reading.md (3)).
 
     `touching`: all closed cells that have a point in common with it.

@@ -47,6 +47,7 @@ class Results:
 
     def __init__(self, proof: Proof, variant: int = 0) -> None:
         self.proof, self.variant, self.needed = proof, variant, set[int]()
+        self.unsupported = 0  # of what has to stay positive throughout a stance, the first that is not shown to
         self.derivation = proof.about(variant)
         self.any = self.derivation.statement.shrink  # any smaller set would do: points and orbits of one refute nothing
         self.statement, self.state = self.derivation.statement, self.derivation.state
@@ -56,17 +57,20 @@ class Results:
         (ball,) = balls
         invariant = self.one("invariant-region", "invariant") or self.one("invariant-ball", "invariant")
         self.domain = invariant.domain if invariant is not None else ball.domain
-        self.settled = invariant is not None
+        self.settled = invariant is not None and self.supported()
+        # a smaller ball that is not mapped into itself, or a stance that is not shown to last, is no set to speak of
+        self.partial = not self.settled and (ball.rule == "smaller-ball" or invariant is not None)
         centre = proof.lines[ball.uses[0]].concludes
         asked = self.settled or any(r.kind == "radius" for r in self.statement.requirements)
         self.centre, self.edge = Span(centre["lower"], centre["upper"]), self.reach() if asked else None
         self.radius = Span(ball.concludes["radius"], self.edge)
-        self.kind, self.whole = self.set_found(invariant, ball)
+        self.kind, self.whole = self.set_found(invariant if self.settled else None, ball)
         orbit = self.one("orbit", "orbit")
         self.orbit = orbit.concludes["distance"] if orbit is not None else None
         self.room = self.room_left(orbit)
         self.missed = self.moved_at_least(far(self.attained(f"target-miss[{self.state}]")))
-        self.routes = {name: self.route(name) for name in PAIRS if self.one(name, name) is not None}
+        proved = () if self.partial else PAIRS
+        self.routes = {name: self.route(name) for name in proved if self.one(name, name) is not None}
         self.reported = self.chosen()
         route = self.routes.get(self.reported, Route())
         self.residual, self.bound = route.residual, route.bound
@@ -86,6 +90,16 @@ class Results:
         if ball.rule == "largest-ball" and wide and self.escapes():
             return "ball", True
         return "smaller ball", self.statement.shrink and wide
+
+    def supported(self) -> bool:
+        """Whether what has to stay positive throughout a stance does: proofs/stance.md (4)."""
+        motion = self.derivation.motion
+        for k in range(1, 1 + len(motion.positive) if motion is not None else 1):
+            line = self.one("range", f"support[{k}]")
+            if line is None or line.domain != self.domain or not line.concludes["lower"] > 0:
+                self.unsupported = k
+                return False
+        return True
 
     def escapes(self) -> bool:
         """Whether a point leaves the region: else no ball is the set (proofs/invariant-set.md (4))."""
@@ -136,8 +150,8 @@ class Results:
         found = [r.gain for n, r in self.routes.items() if n != "curve"]
         lowers = [g.lower for g in found if g.lower is not None]
         uppers = [g.upper for g in found if g.upper is not None]
-        every = bool(lowers) and len(lowers) == len(found)
-        return Span(min(lowers) if every else None, min(uppers, default=None))
+        every = len(lowers) == len(found) and (not self.statement.correction or "split" in self.routes)
+        return Span(min(lowers, default=None) if every else None, min(uppers, default=None))
 
     def least_bound(self) -> Span | None:
         """How far the state can be in the long run, by the best argument on the set."""
@@ -247,16 +261,27 @@ class Results:
         asked = self.statement.route
         span = self.routes.get(asked, Route()).gain if asked in ("slope", "split") else self.contraction()
         final = not self.any and (asked in ("slope", "split") or not self.statement.correction)
-        proved = self.whole and compared(r.relation, Span(None, span.upper), c)
+        proved = self.whole and not self.derivation.loose() and compared(r.relation, Span(None, span.upper), c)
         return verdict(proved, final and opposed(r.relation, Span(None, span.lower), c), span)
 
     def push_outcome(self, r: Any, c: tuple[Fraction, Fraction]) -> Outcome:
         """The largest push is not attained itself, so the constant has to be smaller: proofs/settling.md (2)."""
         if r.during:
-            return Outcome("undecided", None)
+            return self.pushed_within(r, c)
         proved = self.whole and self.push is not None and less(c[1], self.push.lower)
         span = self.push if self.push is not None else None if self.room is None else Span(None, self.room)
         return verdict(proved, not self.any and opposed(r.relation, Span(self.room, None), c), span)
+
+    def pushed_within(self, r: Any, c: tuple[Fraction, Fraction]) -> Outcome:
+        """What is left of the radius, over the growth of a change until touchdown: proofs/stance.md (6)."""
+        line = self.one("range", f"growth[{self.state}]")
+        if line is None or line.domain != self.domain or self.push is None or self.push.lower is None:
+            return Outcome("undecided", None)
+        growth = max(line.concludes["upper"], -line.concludes["lower"])
+        if growth <= 0:
+            return Outcome("undecided", None)
+        room = self.push.lower / growth
+        return verdict(self.whole and less(c[1], room), False, Span(room, None))
 
     def stepped(self, number: int, r: Any, c: tuple[Fraction, Fraction]) -> Outcome:
         """proofs/settling.md (1): steps after which the error stays within `to`, from any start within `from`."""
@@ -292,7 +317,7 @@ class Results:
 
             def led(e: Fraction) -> Fraction:
                 within = [level for rho, level in zip(radii, highest, strict=True) if rho >= e]
-                return min(by_line(e), *within[:1])
+                return min([by_line(e), *within[:1]])
 
         if not led(wanted) <= wanted:
             return None
@@ -309,11 +334,16 @@ class Results:
 
     def ranged(self, number: int, r: Any) -> Outcome:
         line, taken = self.one("range", f"require[{number}]"), self.attained(f"require[{number}]")
+        if self.partial and line is not None and line.on_set:
+            line = None
+        if self.partial and not (self.domain is not None and self.domain.ball):
+            taken = NOTHING  # the region may hold more than the ball that the requirement is about
         if line is not None and line.domain != self.domain:
             raise Rejected(f"require[{number}]: over another set than the gain")
         value = Span(line.concludes["lower"], line.concludes["upper"]) if line is not None else None
         proved = line is not None and (self.whole or not line.on_set)
-        zero = (Fraction(0), Fraction(0)) if r.kind == "always" else None
+        proved &= self.whole or self.derivation.motion is None  # that the stance lasts is part of the set's proof
+        zero = (Fraction(0), Fraction(0)) if r.kind in ("always", "throughout") else None
         c = zero or (constant(r.constant, self.statement.values) if r.constant is not None else None)
         if c is not None:
             proved = proved and value is not None and compared(r.relation, value, c)

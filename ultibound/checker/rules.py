@@ -8,12 +8,15 @@ from fractions import Fraction
 from itertools import product
 from typing import Any
 
+from .calculus import Unprovable
 from .courses import arithmetic, orbit, path, place
-from .derive import Derivation, Unprovable, varied
+from .derive import Derivation, varied
+from .flows import trajectory
 from .forms import walk
+from .numerals import Rejected, quantity
 from .ranges import Evaluator
 from .reals import Undefined
-from .theorems import THEOREMS, Line, Rejected, quantity, shells
+from .theorems import THEOREMS, Line, parted, shells
 
 __all__ = ["Line", "Proof", "Rejected", "place", "quantity"]
 
@@ -27,6 +30,7 @@ SHAPES = {
     "slope": ((), ("gain", "residual")),
     "split": ((), ("gain", "residual")),
     "shells": (("radii", "slope"), ()),
+    "trajectory": (("bits", "cells", "cuts", "degrees", "pieces"), ("error",)),
     "curve": ((), ("gain", "residual", "sharp")),
     "orbit": (("bits", "held", "start", "steps"), ("distance", "highest", "lowest")),
     "path": (("bits", "held", "start", "steps"), ("distance", "from", "steps")),
@@ -70,7 +74,12 @@ class Proof:
             raise Rejected("uses: lines about other ranges")
         try:
             d = self.about(variant)
-            if rule in ("range", "point"):
+            if rule == "trajectory":
+                if proves != "flow" or used or d.motion is None:
+                    raise Rejected("a flow rests on no other line, and on dynamics")
+                flows = trajectory(d.terms, d.motion, d.statement.libraries, witness, claimed["error"])
+                line = Line(rule, proves, (), claimed, flows=flows)
+            elif rule in ("range", "point"):
                 line = self.enclosed(d, rule, proves, tuple(uses), used, witness, claimed)
             elif rule == "shells":
                 if not isinstance(witness["radii"], list):
@@ -99,17 +108,17 @@ class Proof:
         claimed: dict[str, Fraction],
     ) -> Line:
         """Rules range and point: this checker's own enclosure must lie within what is concluded."""
-        domain = None
+        domain, (used, flows) = None, parted(used)
         if used:
             if len(used) != 1 or used[0].domain is None:
                 raise Rejected("uses: the one line that gives the set")
             domain = used[0].domain
         meaning = d.meaning(proves, domain)
         if used and proves.startswith(("target", "image")):
-            raise Rejected("uses: this obligation rests on no other line")
+            raise Rejected("uses: this obligation rests on no set")
         precision = arithmetic(witness["bits"])
         names = [v.name for v in meaning.variables]
-        evaluator = Evaluator(d.terms, meaning.root, meaning.by, names, d.statement.libraries, precision)
+        evaluator = Evaluator(d.terms, meaning.root, meaning.by, names, d.statement.libraries, precision, flows)
         if rule == "range":
             trees = witness["trees"]
             if not isinstance(trees, list) or not all(isinstance(t, str) for t in trees):

@@ -1,12 +1,10 @@
-"""The claim's expressions with names resolved: a flat list of terms, each different one once."""
+"""Expressions as a flat list of terms, each different one once."""
 
 from __future__ import annotations
 
 from fractions import Fraction
-from itertools import pairwise
 
-from .grammar import Expression, Node, Refused, exact, powered
-from .model import Stance, Statement
+from .grammar import Node, Refused, exact, powered
 
 DEEPEST, MOST_PAIRS = 40, 10_000
 FOLDED = frozenset(["add", "sub", "mul", "div", "neg", "sqrt", "abs", "min", "max"])
@@ -25,6 +23,8 @@ class Terms:
             folded = fold(op, [q for a in args if isinstance(q := self.all[a][2], Fraction)])
             if folded is not None:
                 op, args, payload = "number", (), folded
+        if op == "sub" and args[0] == args[1]:  # nothing, where it is defined
+            op, args = "mul", (self.put("number", (), Fraction(0)), args[0])
         term = (op, args, payload)
         if term not in self.rank:
             self.rank[term] = len(self.all)
@@ -103,78 +103,3 @@ def fold(op: str, operands: list[Fraction]) -> Fraction | None:
         return exact(Node(op), operands) if op in FOLDED else None
     except Refused:  # too long to be held exactly, or not defined
         return None
-
-
-class Names:
-    """Meaning of names as ranks of terms. `bound` replaces names; `cut` is the name a derivative is taken by,
-    whose term is wrapped in a `mark` at which the derivative stops (proofs/forms.md)."""
-
-    def __init__(self, terms: Terms, statement: Statement, bound: dict[str, int], cut: str) -> None:
-        stance: Stance = statement.stances[0]
-        self.terms, self.statement, self.cut, self.rank = terms, statement, cut, dict(bound)
-        if cut in bound:
-            self.rank[cut] = terms.put("mark", (bound[cut],), cut)
-        self.text: dict[str, Expression] = {**statement.constants, **statement.gains, **stance.define}
-        for s in stance.states:
-            self.text[f"target({s})"], self.text[f"next({s})"] = stance.target[s], stance.next[s]
-        self.library = {c: k for k, library in enumerate(statement.libraries) for c in library.columns}
-
-    def of(self, name: str) -> int:
-        waiting = [name]
-        while waiting:
-            name = waiting[-1]
-            missing = [n for e in self.sources(name) for n in mentioned(e) if n not in self.rank]
-            if name not in self.rank and missing:
-                waiting += missing
-                continue
-            if name not in self.rank:
-                rank = self.term(name)
-                self.rank[name] = self.terms.put("mark", (rank,), name) if name == self.cut else rank
-            waiting.pop()
-        return self.rank[name]
-
-    def sources(self, name: str) -> tuple[Expression, ...]:
-        if name in self.text:
-            return (self.text[name],)
-        return self.statement.libraries[self.library[name]].at if name in self.library else ()
-
-    def term(self, name: str) -> int:
-        if name in self.text:
-            return self.expression(self.text[name])
-        if name in self.library:
-            axes = tuple(self.expression(e) for e in self.sources(name))
-            return self.terms.put("reading", axes, name)
-        return self.terms.put("variable", (), name)
-
-    def expression(self, e: Expression) -> int:
-        put, ranks = self.terms.put, list[int]()
-        for node in e.nodes:
-            args = tuple(ranks[a] for a in node.args)
-            if node.op in ("name", "target", "next"):
-                ranks.append(self.of(called(node.op, node.name)))
-            elif node.op == "power" and node.value is not None:
-                ranks.append(self.terms.raised(args[0], node.value))
-            elif node.op == "bezier":
-                points = args[1:]
-                while len(points) > 1:  # de Casteljau
-                    points = tuple(
-                        put("add", (a, put("mul", (args[0], put("sub", (b, a)))))) for a, b in pairwise(points)
-                    )
-                ranks.append(points[0])
-            elif node.op == "clip":
-                ranks.append(put("min", (put("max", args[:2]), args[2])))
-            elif node.op in ("min", "max"):
-                for a in args[1:]:
-                    args = (put(node.op, (args[0], a)),)
-                ranks.append(args[0])
-            else:
-                ranks.append(put(node.op, args, node.value))
-        return ranks[-1]
-
-
-def called(op: str, name: str | None) -> str:
-    return str(name) if op == "name" else f"{op}({name})"
-
-
-def mentioned(e: Expression) -> list[str]:
-    return [called(n.op, n.name) for n in e.nodes if n.op in ("name", "target", "next")]

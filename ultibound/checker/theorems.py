@@ -4,18 +4,14 @@ from __future__ import annotations
 
 from dataclasses import dataclass, replace
 from fractions import Fraction
-from typing import Any
 
 from .derive import Derivation, Domain
-from .numerals import read_number
+from .flows import Flows
+from .numerals import Rejected
 
 Quantities = dict[str, Fraction]
 MOST_SHELLS = 999
 PAIRS = ("slope", "split", "curve")  # rules that conclude gain and residual
-
-
-class Rejected(Exception):
-    """A line that does not hold, and why."""
 
 
 @dataclass(frozen=True)
@@ -27,6 +23,13 @@ class Line:
     domain: Domain | None = None
     on_set: bool = False
     variant: int = 0  # the requirement whose `over` the line is about, or 0
+    flows: Flows | None = None
+
+
+def parted(used: list[Line]) -> tuple[list[Line], Flows | None]:
+    """Lines used, but for the last where it is the flow of a stance."""
+    flows = used[-1].flows if used else None
+    return (used, None) if flows is None else (used[:-1], flows)
 
 
 def largest_ball(d: Derivation, proves: str, used: list[Line], claimed: Quantities) -> Domain:
@@ -35,9 +38,9 @@ def largest_ball(d: Derivation, proves: str, used: list[Line], claimed: Quantiti
     require(proves, "ball", used[1:], [("point", f"target[{d.state}]")] * len(used[1:]))
     (low, high), _ = d.region()
     edges = [min(high - x.concludes["lower"], x.concludes["upper"] - low) for x in used[1:]]
-    if not edges or not claimed["outer"] >= min(edges):
+    if not edges or not claimed["outer"] >= min(edges):  # and so no less than the radius
         raise Rejected("outer: larger balls are not shown to leave the region")
-    return replace(found, beyond=max(claimed["outer"] - found.radius, Fraction(0)))
+    return replace(found, beyond=claimed["outer"] - found.radius)
 
 
 def smaller_ball(d: Derivation, proves: str, used: list[Line], claimed: Quantities) -> Domain:
@@ -196,12 +199,3 @@ def require(proves: str, name: str, used: list[Line], wanted: list[tuple[str, st
 
 def magnitude(line: Line) -> Fraction:
     return max(abs(line.concludes["lower"]), abs(line.concludes["upper"]))
-
-
-def quantity(text: Any, place_: str) -> Fraction:
-    if not isinstance(text, str):
-        raise Rejected(f"{place_}: a proved number is written as text")
-    try:
-        return read_number(text)
-    except ValueError as why:
-        raise Rejected(f"{place_}: {why}") from None
