@@ -21,6 +21,8 @@ from .certificate.results import assembled
 from .checker import Verdict, check
 from .checker.derive import Derivation
 from .checker.derive import varied as statement_varied
+from .checker.flows import Flows
+from .checker.reals import Undefined
 from .checker.results import Results
 from .checker.rules import Rejected
 from .checker.theorems import levels, movement, sharpest
@@ -29,16 +31,24 @@ from .claim.constants import constant
 from .claim.obligations import RANGED, Domain, Obligations, not_yet, varied
 from .contraction.curve import Profile, inward
 from .contraction.orbits import Steering, orbits, slow_path
+from .stance.points import Unsolved
+from .stance.trials import Trial, trial
 
 SHARPER = 1e-2  # factor on the gap when an undecided requirement is pursued
 FINEST = 1e-11
 COARSE = 0.03
+DECIDED = 0.5  # gap at which the sign of what is not near zero is known
+ACCURACY = 1e-11  # of the trial trajectories, relative to the largest of them
+PADDING = 1e-3  # what a library axis may take beyond what the search found
 TARGET_GAP = 1e-8  # suprema are taken over a ball larger by as much: proofs/invariant-set.md (4)
 SPARE = 0.01  # share of a smaller ball's radius left free
 MOST_ROUGH = 300  # cells of a library over which no curve is followed unless one is asked for
 ROUGH, QUICK, FEW, MOST = 3e-2, 8, 1, 60  # gap, leaves a shell and shells of a rough curve; shells of a sharp one
 TRIED = 4  # orbits, the furthest first
 REACH = 10_000  # steps of the longest path
+
+
+Known = dict[int, tuple[Trial, Flows]]  # by requirement with ranges of its own, or 0
 
 
 class InternalError(Exception):
@@ -70,8 +80,9 @@ def _proved(claim: Claim, watch: Watch) -> Certificate:
     gap = to_float(claim.gap)
     until = time.monotonic() + to_float(claim.seconds)
     sharp = claim.route == "curve" or any(r.kind == "sharp_bound" for r in claim.requirements)
+    known: Known = {}
     while True:
-        attempt = _best(Attempt(claim, gap, until, watch, sharp))
+        attempt = _best(Attempt(claim, gap, until, watch, sharp, known=known))
         if attempt.curve_may_help and not attempt.ranges.interrupted and time.monotonic() < until:
             sharp = True
             continue
@@ -96,8 +107,9 @@ def _best(whole: Attempt) -> Attempt:
     if whole.smaller is None or whole.ranges.interrupted:
         return whole
     attempt = Attempt(
-        whole.claim, whole.gap, whole.until, whole.watch, whole.sharp, whole.smaller, whole.variant, whole.derivation
-    )
+        whole.claim, whole.gap, whole.until, whole.watch, whole.sharp, whole.smaller, whole.variant, whole.derivation,
+        whole.known,
+    )  # fmt: skip
     return attempt if attempt.results.settled and attempt.decided >= whole.decided else whole
 
 
@@ -120,6 +132,7 @@ class Attempt:
 
     `sharp`: the error curve is followed to the gap, not just roughly. `within`: a radius smaller than the largest.
     `variant`, `derivation`: one requirement over ranges of its own, and what the checker derives for it.
+    `known`: flows of the stance that were proved in an earlier pass.
     """
 
     def __init__(
@@ -132,10 +145,11 @@ class Attempt:
         within: Fraction | None = None,
         variant: int = 0,
         derivation: Derivation | None = None,
+        known: Known | None = None,
     ) -> None:
         self.claim, self.gap, self.until, self.watch = claim, gap, until, watch
         self.sharp, self.within = sharp, within
-        self.variant, self.derivation = variant, derivation
+        self.variant, self.derivation, self.known = variant, derivation, {} if known is None else known
         self.obligations, self.writer = Obligations(claim), Writer(claim, derivation)
         self.ranges = Encloser(claim, self.obligations.graph, self.writer, gap, until, watch)
         self.near_region = False
@@ -163,6 +177,7 @@ class Attempt:
     def _prove(self) -> None:
         """Lines for the certified set, the routes on it, orbits in it, and the requirements."""
         o, w = self.obligations, self.writer
+        self._flow()
         target = self._target()
         ball = self._ball(target)
         found = w.proof.lines[ball].domain
@@ -172,6 +187,9 @@ class Attempt:
         domain = Domain("region" if region is not None else "ball", radius, ends, beyond)
         on = ball if region is None else region
         moves = self._moves()
+        for number in range(1, len(o.motion.positive) + 1 if o.motion is not None else 1):
+            self.ranges.enclose(o.support(number, domain), on, gap=DECIDED, side=-1)
+        self._growth(domain, on)
         self._slope(domain, on, moves)
         self._split(domain, on, moves)
         if radius > 0:
@@ -184,13 +202,65 @@ class Attempt:
             self._paths(invariant, target.lower if target.lower == target.upper else None)
         for number, r in enumerate(self.claim.requirements, 1):
             if r.kind in RANGED and not self.variant:
-                self.ranges.enclose(o.requirement(number, domain), on)
+                self._range(number, domain, on)
+
+    def _growth(self, domain: Domain, on: int) -> None:
+        """How changes within the stance grow, where a push asks for it: proofs/stance.md (6)."""
+        if any(r.during for r in self.claim.requirements):
+            self.ranges.enclose(self.obligations.growth(domain), on, magnitude=True)
+
+    def _flow(self) -> None:
+        """The flow of the stance over all that its rates depend on: proofs/trajectory.md."""
+        m = self.obligations.motion
+        if m is None:
+            return
+
+        def watch(done: int, total: int) -> None:
+            self.watch("the flow of the stance", done, float(total))
+
+        try:
+            if self.variant not in self.known:
+                spans = {p.name: self._span(p.gate, p.grid) for p in m.parameters}
+                found = trial(self.obligations.graph, m, self.claim.libraries, spans, ACCURACY, watch=watch)
+                self.known[self.variant] = found, self.writer.flows_of(found.witness)
+            found, flows = self.known[self.variant]
+            self.ranges.flows = found.table
+            self.writer.trajectory(found.witness, flows)
+        except (Rejected, Undefined, Unsolved) as why:
+            self.ranges.limits["flow"] = str(why)
+
+    def _span(self, gate: int, grid: tuple[Fraction, ...] | None) -> tuple[Fraction, Fraction]:
+        """Ends between which a parameter of the rates surely stays, but for what a library cannot be read at."""
+        o = self.obligations
+        found = o.graph.gates[gate]
+        if found.op == "variable":
+            low, high = o.spread(found.name)
+        else:
+            ends = self.ranges.search(o.ranging(gate), False, COARSE)
+            room = Fraction(PADDING * max(ends.upper - ends.lower, abs(ends.upper), abs(ends.lower)))
+            low, high = Fraction(ends.lower) - room, Fraction(ends.upper) + room
+        return (low, high) if grid is None else (max(low, grid[0]), min(high, grid[-1]))
+
+    def _range(self, number: int, domain: Domain, on: int) -> None:
+        """The range of a requirement; of an inequality only as closely as it takes to decide it."""
+        r, name = self.claim.requirements[number - 1], f"require[{number}]"
+        try:
+            obligation = self.obligations.requirement(number, domain)
+            if r.kind in ("always", "throughout"):
+                side = 1 if r.relation in ("<", "<=") else -1
+                found = self.ranges.search(obligation, False, DECIDED, side=side)
+                if min(found.upper * side, found.lower * side) < 0 or (found.upper if side > 0 else -found.lower) < 0:
+                    self.ranges.enclose(obligation, on, gap=DECIDED, side=side)
+                    return
+            self.ranges.enclose(obligation, on)
+        except Bad as why:
+            self.ranges.limits[name] = str(why)
 
     def _over(self, number: int) -> None:
         """A requirement over ranges of its own: a proof of the same kind, whose lines are taken in."""
         derivation = Derivation(statement_varied(self.writer.derivation.statement, number))
         claim = varied(self.claim, number)
-        own = _best(Attempt(claim, self.gap, self.until, self.watch, self.sharp, None, number, derivation))
+        own = _best(Attempt(claim, self.gap, self.until, self.watch, self.sharp, None, number, derivation, self.known))
         self.ranges.interrupted |= own.ranges.interrupted
         self.writer.adopt(own.writer, number, own.results.needed)
 
@@ -292,7 +362,7 @@ class Attempt:
             if shell is None:
                 return
             found.append(shell.line)
-        above = self.ranges.enclose(o.line(domain, k), written, points=False, gap=gap, cells=cells, upper=True)
+        above = self.ranges.enclose(o.line(domain, k), written, points=False, gap=gap, cells=cells, side=1)
         if above is None:
             return
         moved = self._moved(moves)

@@ -25,6 +25,7 @@ def undefined_point(claim: Claim) -> tuple[str, str] | None:
     o = Obligations(claim)
     s = o.state
     roots = [(f"next.{s}", o.image()), (f"target.{s}", o.target())]
+    roots += [("dynamics.rate", x) for x in o.coefficients()]
     region = Domain("region", Fraction(0), (Fraction(0), Fraction(0)))
     for number, r in enumerate(claim.requirements, 1):
         if r.kind == "value" and not r.over:

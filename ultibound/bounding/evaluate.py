@@ -10,6 +10,7 @@ from typing import Any
 import numpy as np
 
 from ..claim.model import Library
+from ..polynomial.flows import FlowTable
 from ..stepmap.program import Program, Step
 from .intervals import UNARY, Branch, Floats, Pair, Table, div, hull, mul, power
 
@@ -45,12 +46,20 @@ class Run:
 
 
 class Runner:
-    """A program made ready for numpy: `variables` name the columns of the boxes it is given."""
+    """A program made ready for numpy: `variables` name the columns of the boxes it is given.
+
+    `flows` holds the fundamental solutions of a continuous stance; without it they are nowhere defined.
+    """
 
     def __init__(
-        self, program: Program, variables: Sequence[str], libraries: Sequence[Library], derivative: bool = False
+        self,
+        program: Program,
+        variables: Sequence[str],
+        libraries: Sequence[Library],
+        derivative: bool = False,
+        flows: FlowTable | None = None,
     ) -> None:
-        self.program, self.variables = program, list(variables)
+        self.program, self.variables, self.flows = program, list(variables), flows
         self.slack = NEAR if derivative else -NEAR  # at a tie a derivative meets both branches, a value one: corners.md
         self._tables: dict[tuple[int, str], Table] = {}
         for step in program.steps:
@@ -82,6 +91,11 @@ class Runner:
                     table = self._tables[int(step.value or 0), step.name]
                     fixed = branches.get(number) if branches else None
                     pair, met[number] = table.read([done[a] for a in step.args], step.orders, count, fixed)
+                    done.append(pair)
+                elif step.op == "flow" and self.flows is not None:
+                    i, j = (int(x) for x in step.name.split())
+                    fixed = branches.get(number) if branches else None
+                    pair, met[number] = self.flows.read(i, j, step.orders, [done[a] for a in step.args], count, fixed)
                     done.append(pair)
                 elif step.op in ("abs", "max", "min", "pick"):
                     done.append(_corner(step, done, sides, hold, count, self.slack))
@@ -115,6 +129,8 @@ class Runner:
             case "number":
                 x = np.asarray(to_float(step.value or Fraction(0)))
                 return x, x
+            case "flow":
+                return np.asarray(np.nan), np.asarray(np.nan)
             case "pi":
                 return np.asarray(np.pi), np.asarray(np.pi)
             case "add":

@@ -37,7 +37,7 @@ class Effort:
     watch: Callable[[int, float], None] = lambda leaves, gap: None
     floor: float = 0.0  # an absolute gap that is enough
     patience: int = 10**9  # leaves after which to give up, for a form that needs fewer
-    upper: bool = False  # only the upper end is wanted
+    side: int = 0  # 1, -1: only the upper, the lower end is wanted
 
 
 @dataclass(frozen=True, slots=True)
@@ -143,9 +143,8 @@ def _allowed(best: tuple[_Best, _Best], magnitude: bool, effort: Effort) -> tupl
     if magnitude:
         top = max(abs(top), abs(bottom))
         bottom = -top
-    if effort.upper:
-        return top + max(gap * abs(top), least), -np.inf
-    return top + max(gap * abs(top), least), bottom - max(gap * abs(bottom), least)
+    ceiling, floor = top + max(gap * abs(top), least), bottom - max(gap * abs(bottom), least)
+    return np.inf if effort.side < 0 else ceiling, -np.inf if effort.side > 0 else floor
 
 
 def _bisect(boxes: _Boxes, live: Any, variable: Any) -> Any:

@@ -13,7 +13,9 @@ from ..checker.reals import Undefined
 from ..checker.rules import Rejected
 from ..claim import Claim
 from ..claim.graph import Graph
+from ..claim.motion import PHASE
 from ..claim.obligations import Obligation
+from ..polynomial.flows import FlowTable
 from ..stepmap.symbolic import compiled
 from .lines import Writer
 
@@ -46,6 +48,7 @@ class Encloser:
         self.claim, self.graph, self.writer, self.gap, self.until, self.watch = claim, graph, writer, gap, until, watch
         self.interrupted = False
         self.limits: dict[str, str] = {}
+        self.flows: FlowTable | None = None  # of the stance, where there are dynamics
         self._runners: dict[tuple[int, str, bool], Runner] = {}
 
     def enclose(
@@ -57,17 +60,17 @@ class Encloser:
         gap: float = 0.0,
         floor: float = 0.0,
         cells: int = 0,
-        upper: bool = False,
+        side: int = 0,
     ) -> Proved | None:
         """A range line and the points nearest its ends; None where the checker finds no finite range.
 
         `floor` is an absolute gap that is enough whatever the size of the quantity, `cells` a limit of leaves;
-        `upper`: only the upper end is wanted.
+        `side`: 1, -1: only the upper, the lower end is wanted.
         """
         w, name, wanted = self.writer, obligation.name, gap or self.gap
         rational, share = w.rational(name, on), 1.0
         for _ in range(5):
-            found = self.search(obligation, magnitude, wanted * share, floor * share, cells, upper)
+            found = self.search(obligation, magnitude, wanted * share, floor * share, cells, side)
             bits = 0 if rational else BITS + _extra(found)
             self.watch(f"{name}: enclosing the leaves in the checker's arithmetic", found.leaves, found.upper)
             try:
@@ -82,7 +85,7 @@ class Encloser:
                     return None
                 continue
             taken = [self._point(name, p, bits, on) for p in (found.highest, found.lowest)]
-            if found.stopped or _close(ends, [t[1] for t in taken if t], magnitude, wanted, floor, upper):
+            if found.stopped or _close(ends, [t[1] for t in taken if t], magnitude, wanted, floor, side):
                 break
             share /= 8
         else:
@@ -98,13 +101,7 @@ class Encloser:
         return Proved(line, low, high, least, most, found.stopped)
 
     def search(
-        self,
-        obligation: Obligation,
-        magnitude: bool,
-        gap: float,
-        floor: float = 0.0,
-        cells: int = 0,
-        upper: bool = False,
+        self, obligation: Obligation, magnitude: bool, gap: float, floor: float = 0.0, cells: int = 0, side: int = 0
     ) -> Found:
         """Witnesses for a range; of a value that takes many leaves, with the second-order form."""
 
@@ -112,8 +109,10 @@ class Encloser:
             self.watch(obligation.name, leaves, high)
 
         def attempt(curved: bool) -> Found:
-            patience = 10**9 if curved or obligation.by else PATIENCE
-            effort = Effort(gap, cells or self.claim.cells, self.until, watch, floor, patience, upper)
+            # no second derivative by time is proved of a flow: proofs/trajectory.md (6)
+            plain = obligation.by or any(v.name == PHASE for v in obligation.variables)
+            patience = 10**9 if curved or plain else PATIENCE
+            effort = Effort(gap, cells or self.claim.cells, self.until, watch, floor, patience, side)
             return search(self.runner(obligation, curved), obligation, magnitude, effort)
 
         try:
@@ -128,7 +127,7 @@ class Encloser:
         if key not in self._runners:
             names = [v.name for v in obligation.variables]
             program = compiled(self.graph, obligation.root, obligation.by, names, curved)
-            self._runners[key] = Runner(program, names, self.claim.libraries, bool(obligation.by))
+            self._runners[key] = Runner(program, names, self.claim.libraries, bool(obligation.by), self.flows)
         return self._runners[key]
 
     def interrupt(self) -> None:
@@ -171,7 +170,7 @@ def _close(
     magnitude: bool,
     gap: float,
     floor: float,
-    upper: bool,
+    side: int,
 ) -> bool:
     """Whether the measured ends are within the gap of values surely taken."""
     if not taken:
@@ -181,9 +180,8 @@ def _close(
     if magnitude:
         most = max(high, -low, Fraction(0))
         return max(abs(ends[0]), abs(ends[1])) - most <= max(share * most, least)
-    if upper:
-        return ends[1] - high <= max(share * abs(high), least)
-    return ends[1] - high <= max(share * abs(high), least) and low - ends[0] <= max(share * abs(low), least)
+    top, bottom = ends[1] - high <= max(share * abs(high), least), low - ends[0] <= max(share * abs(low), least)
+    return (top or side < 0) and (bottom or side > 0)
 
 
 def _extra(found: Found) -> int:

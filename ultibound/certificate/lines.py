@@ -11,6 +11,7 @@ from typing import Any
 from ..checker.courses import Course, course_variables, nearest
 from ..checker.derive import Derivation, Domain, Meaning
 from ..checker.exact import Exact
+from ..checker.flows import Flows, trajectory
 from ..checker.forms import walk
 from ..checker.numerals import decimal_down, decimal_up
 from ..checker.ranges import Evaluator
@@ -25,7 +26,7 @@ RATIONAL_CELLS = 64
 RATIONAL_TERMS = 400
 FEW_STEPS = 50  # of an exact path: its fractions grow with every step
 IRRATIONAL = frozenset(
-    ["pi", "exp", "log", "sin", "cos", "tan", "asin", "acos", "atan", "sinh", "cosh", "tanh", "sqrt"]
+    ["flow", "pi", "exp", "log", "sin", "cos", "tan", "asin", "acos", "atan", "sinh", "cosh", "tanh", "sqrt"]
 )
 
 
@@ -37,6 +38,7 @@ class Writer:
         self.derivation = derivation or Derivation(read_statement(claim.text, claim.settings, claim.data))
         self.proof = Proof(self.derivation)
         self.raw: list[dict[str, Any]] = []
+        self.flow: int | None = None  # the line of the stance's flow
 
     def domain(self, number: int | None) -> Domain | None:
         return None if number is None else self.proof.lines[number].domain
@@ -85,14 +87,41 @@ class Writer:
         low, high = _down(ends[0], limit), _up(ends[1], limit)
         uses = [] if on is None else [on]
         concludes = {"lower": low[0], "upper": high[0]}
-        line = {"rule": rule, "proves": proves, "uses": uses, "witness": witness, "concludes": concludes}
         meaning = self.derivation.meaning(proves, self.domain(on))
+        uses = uses + self._flow(meaning.root)
+        line = {"rule": rule, "proves": proves, "uses": uses, "witness": witness, "concludes": concludes}
         self.raw.append(line)
         number = len(self.raw)
         self.proof.lines[number] = Line(
             rule, proves, tuple(uses), {"lower": low[1], "upper": high[1]}, self.domain(on), meaning.on_set
         )
         return number
+
+    def flows_of(self, witness: dict[str, Any]) -> Flows:
+        """What trial polynomials prove of the flow of the stance; raises checker.rules.Rejected."""
+        d = self.derivation
+        if d.motion is None:
+            raise Rejected("no dynamics")
+        return trajectory(d.terms, d.motion, d.statement.libraries, witness, None)
+
+    def trajectory(self, witness: dict[str, Any], flows: Flows) -> None:
+        """Appends the flow of the stance, with the error that was proved."""
+        concludes = {"error": upward(flows.error)}
+        self.raw.append(
+            {"rule": "trajectory", "proves": "flow", "uses": [], "witness": witness, "concludes": concludes}
+        )
+        self.flow = len(self.raw)
+        claimed = {"error": Fraction(concludes["error"])}
+        self.proof.lines[self.flow] = Line("trajectory", "flow", (), claimed, flows=flows)
+
+    def _flow(self, root: int | None) -> list[int]:
+        """The line of the flow, where a term (or a course) rests on it."""
+        terms = self.derivation.terms
+        met = root is None or any(terms.all[k][0] == "flow" for k in terms.below(root))
+        return [self.flow] if met and self.flow is not None else []
+
+    def _flows(self) -> Flows | None:
+        return None if self.flow is None else self.proof.lines[self.flow].flows
 
     def theorem(self, rule: str, proves: str, uses: list[int], concludes: dict[str, str]) -> int:
         """Appends a theorem's line; raises checker.rules.Rejected where its hypotheses do not hold."""
@@ -171,7 +200,7 @@ class Writer:
 
         witness |= {"held": spelled(held), "steps": [spelled(w) for w in steps]}
         try:
-            course = Course(d, witness)
+            course = Course(d, witness, self._flows())
             texts = [Fraction(t) for t in witness["start"]]
             states = course.follow((texts[0], texts[-1]))
             if rule == "orbit":
@@ -184,7 +213,13 @@ class Writer:
                 first, last = course.errors([states[0], states[-1]])
                 far = upward(max(-first[0], first[1]))
                 concludes = {"distance": downward(nearest(last)), "from": far, "steps": str(len(steps))}
-            line = {"rule": rule, "proves": rule, "uses": [on], "witness": witness, "concludes": concludes}
+            line = {
+                "rule": rule,
+                "proves": rule,
+                "uses": [on, *self._flow(None)],
+                "witness": witness,
+                "concludes": concludes,
+            }
             self.proof.add(line)
         except (Rejected, Undefined):
             return False
@@ -221,7 +256,8 @@ class Writer:
         names = [v.name for v in meaning.variables]
         arithmetic = Scaled(bits) if bits else Exact()
         libraries = self.derivation.statement.libraries
-        return meaning, Evaluator(self.derivation.terms, meaning.root, meaning.by, names, libraries, arithmetic)
+        terms, flows = self.derivation.terms, self._flows()
+        return meaning, Evaluator(terms, meaning.root, meaning.by, names, libraries, arithmetic, flows)
 
 
 def _down(q: Fraction, limit: int = EXACT) -> tuple[str, Fraction]:

@@ -68,6 +68,8 @@ class Remarks:
                 parts.append("over these ranges neither lines nor points decide it")
                 value, c = outcome.value, None if r.constant is None else constant(r.constant, self.claim.values)
                 pursue = value is not None and c is not None and _between(c, value.lower, value.upper)
+            elif results.unsupported:
+                parts.append(self.support(results.unsupported))
             elif not results.settled:
                 parts.append("no set that is mapped into itself was found" + self.size_that_would_do)
             elif results.gain.upper is None and not ranged:
@@ -75,6 +77,8 @@ class Remarks:
             elif r.kind == "settles":
                 why = "gain is not below 1" if results.bound is None else "bound is not below the radius of the set"
                 parts.append(f"the {why}" + self.size_that_would_do)
+            elif r.kind == "gain" and results.derivation.loose():
+                parts.append("the effect of a signal within the stance follows the state: k is that of the pair alone")
             elif self.beyond(number):
                 untried = "the sector route is not tried yet" if r.kind == "gain" else "no orbit that far out was found"
                 parts.append(
@@ -89,6 +93,14 @@ class Remarks:
         if outcome.verdict != "proved" and not self.search.interrupted and not pursue:
             parts += [self.place(number), self.cost(r)]
         return ("; ".join(p for p in parts if p)[:900] or None), pursue
+
+    def support(self, number: int) -> str:
+        """What is not shown to stay positive throughout a stance, and where it is lowest."""
+        what = "the duration" if number == 1 else "what a leg keeps positive that only pushes and never pulls"
+        at = self.told.where(f"support[{number}]")
+        return f"support[{number}], {what}, is not shown to be above 0" + (
+            f"; it was looked at where {at}" if at else ""
+        )
 
     def place(self, number: int) -> str:
         """Where what decides a requirement is largest, as far as points tell."""

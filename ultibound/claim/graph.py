@@ -1,16 +1,13 @@
-"""Expressions of a claim with every name resolved: one flat, shared graph of gates."""
+"""Expressions as one flat, shared graph of gates."""
 
 from __future__ import annotations
 
-from collections.abc import Mapping
 from dataclasses import dataclass
 from fractions import Fraction
-from itertools import pairwise
 
 from .constants import rational
 from .errors import Bad
-from .expression import Expression, Node
-from .model import Claim, Stance
+from .expression import Node
 
 MAX_CANCELLED, MAX_PAIRS = 40, 10_000  # products within products that are told apart, and pairs of them in a sum
 FOLDED = frozenset({"add", "sub", "mul", "div", "neg", "sqrt", "abs", "min", "max"})
@@ -34,6 +31,8 @@ class Graph:
         self._number: dict[Gate, int] = {}
 
     def add(self, op: str, *args: int, value: Fraction | None = None, name: str = "") -> int:
+        if op == "sub" and args[0] == args[1] and self.gates[args[0]].op != "number":
+            op, args = "mul", (self.number(0), args[0])  # nothing, where it is defined
         gate = self._folded(op, args) or Gate(op, args, value, name)
         number = self._number.get(gate)
         if number is None:
@@ -129,97 +128,3 @@ class Graph:
     def variables(self, root: int) -> list[str]:
         """Names of the variables a gate depends on, sorted."""
         return sorted({self.gates[k].name for k in self.reached((root,)) if self.gates[k].op == "variable"})
-
-
-class Scope:
-    """What names mean while expressions become gates.
-
-    `bound` replaces names by gates (a state by its target, a gain by a free variable); `cut` is the name a
-    sensitivity is taken by: it is marked, so that the derivative stops there (proofs/forms.md, mark).
-    """
-
-    def __init__(
-        self, graph: Graph, claim: Claim, stance: Stance, bound: Mapping[str, int] | None = None, cut: str = ""
-    ) -> None:
-        self.graph, self.claim, self.stance, self.cut = graph, claim, stance, cut
-        self._known: dict[str, int] = dict(bound or {})
-        if cut in self._known:
-            self._known[cut] = graph.add("mark", self._known[cut], name=cut)
-        self._texts: dict[str, Expression] = {**claim.constants, **claim.gains, **stance.define}
-        self._texts |= {f"target({s})": e for s, e in stance.target.items()}
-        self._texts |= {f"next({s})": e for s, e in stance.next.items()}
-        self._column = {c: k for k, lib in enumerate(claim.libraries) for c in lib.columns}
-
-    def name(self, wanted: str) -> int:
-        """The gate of a name, or of `target(s)` and `next(s)`; definitions first, without recursion."""
-        stack = [wanted]
-        while stack:
-            top = stack[-1]
-            open_names = [n for n in self._uses(top) if n not in self._known] if top not in self._known else []
-            if open_names:
-                stack.extend(open_names)
-                continue
-            stack.pop()
-            if top not in self._known:
-                gate = self._gate(top)
-                self._known[top] = self.graph.add("mark", gate, name=top) if top == self.cut else gate
-        return self._known[wanted]
-
-    def node(self, expression: Expression) -> int:
-        for n in _names(expression):
-            self.name(n)
-        return self._build(expression)
-
-    def _uses(self, name: str) -> list[str]:
-        if name in self._texts:
-            return _names(self._texts[name])
-        if name in self._column:
-            return [n for e in self.claim.libraries[self._column[name]].at for n in _names(e)]
-        return []
-
-    def _gate(self, name: str) -> int:
-        if name in self._texts:
-            return self._build(self._texts[name])
-        if name in self._column:
-            number = self._column[name]
-            axes = [self._build(e) for e in self.claim.libraries[number].at]
-            return self.graph.add("reading", *axes, value=Fraction(number), name=name)
-        return self.graph.add("variable", name=name)
-
-    def _build(self, expression: Expression) -> int:
-        g, done = self.graph, list[int]()
-        for node in expression.nodes:
-            args = [done[a] for a in node.args]
-            if node.op == "number":
-                done.append(g.number(node.value or 0))
-            elif node.op in ("name", "target", "next"):
-                done.append(self._known[_full(node.op, node.name or "")])
-            elif node.op == "power":
-                done.append(g.power(args[0], node.value or Fraction(0)))
-            elif node.op == "bezier":
-                done.append(self._bezier(args[0], args[1:]))
-            elif node.op == "clip":
-                done.append(g.add("min", g.add("max", args[0], args[1]), args[2]))
-            elif node.op in ("min", "max"):
-                total = args[0]
-                for a in args[1:]:
-                    total = g.add(node.op, total, a)
-                done.append(total)
-            else:
-                done.append(g.add(node.op, *args))
-        return done[-1]
-
-    def _bezier(self, s: int, points: list[int]) -> int:
-        """De Casteljau's scheme, which is the Bernstein form."""
-        g = self.graph
-        while len(points) > 1:
-            points = [g.add("add", a, g.add("mul", s, g.add("sub", b, a))) for a, b in pairwise(points)]
-        return points[0]
-
-
-def _full(op: str, name: str) -> str:
-    return name if op == "name" else f"{op}({name})"
-
-
-def _names(expression: Expression) -> list[str]:
-    return [_full(n.op, n.name or "") for n in expression.nodes if n.op in ("name", "target", "next")]

@@ -13,11 +13,14 @@ from math import prod
 
 from .constants import constant
 from .errors import Bad
-from .graph import Graph, Scope
+from .graph import Graph
 from .model import Claim, Quantity, Range, Requirement
+from .motion import PHASE, Motion, copy, grown, landed, motion, supported
+from .resolve import Scope
 
-RANGED = ("value", "sensitivity", "always")  # requirements that a range proves
+RANGED = ("value", "sensitivity", "always", "throughout")  # requirements that a range proves
 MOST_CELLS = 1_000_000
+WHOLE = ((Fraction(0), Fraction(1)),) * 2  # phases of a stance
 Ends = tuple[Fraction, Fraction]
 
 
@@ -43,7 +46,7 @@ class Obligation:
     root: int
     by: str
     variables: tuple[Variable, ...]
-    reads: bool  # whether a library is read
+    reads: bool  # whether a library is read, also by a flow
 
 
 @dataclass(frozen=True, slots=True)
@@ -70,10 +73,15 @@ class Obligations:
     def __init__(self, claim: Claim) -> None:
         self.claim, self.stance, self.graph = claim, claim.stances[0], Graph()
         (self.state,) = self.stance.states
+        moves = self.stance.dynamics is not None
+        self.motion: Motion | None = motion(Scope(self.graph, claim, self.stance)) if moves else None
         self._fixed_target = not self.graph.variables(self._scope({}).name(f"target({self.state})"))
 
     def _scope(self, bound: Mapping[str, int], cut: str = "") -> Scope:
-        return Scope(self.graph, self.claim, self.stance, bound, cut)
+        return Scope(self.graph, self.claim, self.stance, bound, cut, self._landed)
+
+    def _landed(self, scope: Scope, gate: int, phase: int | None = None) -> int:
+        return gate if self.motion is None else landed(scope, self.motion, gate, phase)
 
     def target(self) -> Obligation:
         """target[s]: x* over the held quantities."""
@@ -93,7 +101,7 @@ class Obligations:
         """target-miss[s]: F(x*, w) − x* over uncertain values."""
         target = self._scope({}).name(f"target({self.state})")
         step = self._scope({self.state: target}).name(f"next({self.state})")
-        return self._of(f"target-miss[{self.state}]", self.graph.add("sub", step, target))
+        return self._of(f"target-miss[{self.state}]", self.graph.difference(step, target))
 
     def moving(self) -> list[str]:
         """Held quantities with a `change` on which the target depends."""
@@ -143,7 +151,7 @@ class Obligations:
         s, g = self.state, self.graph
         target = self._scope({}).name(f"target({s})")
         x = self._kept(g.add("add", target, g.add("variable", name=f"error({s})")), domain)
-        root = g.add("sub", self._scope({s: x}).name(f"next({s})"), target)
+        root = g.difference(self._scope({s: x}).name(f"next({s})"), target)
         return self._of("error", root, "", {f"error({s})": ((-radius, radius),) * 2})
 
     def line(self, domain: Domain, slope: Fraction) -> Obligation:
@@ -152,7 +160,7 @@ class Obligations:
         bound, ranges = self._set(domain)
         scope = self._scope(bound)
         target = scope.name(f"target({s})")
-        far, error = (g.add("abs", g.add("sub", scope.name(x), target)) for x in (f"next({s})", s))
+        far, error = (g.add("abs", g.difference(scope.name(x), target)) for x in (f"next({s})", s))
         return self._of(f"line[{s}]", g.add("sub", far, g.add("mul", g.number(slope), error)), "", ranges)
 
     def requirement(self, number: int, domain: Domain) -> Obligation:
@@ -161,11 +169,47 @@ class Obligations:
         bound, ranges = self._set(domain, wanted.over)
         scope = self._scope(bound, cut=wanted.by or "")
         if wanted.left is not None and wanted.right is not None:
-            root = self.graph.add("sub", scope.node(wanted.left), scope.node(wanted.right))
-            return self._of(f"require[{number}]", root, "", ranges)
+            root, phase = self.graph.add("sub", scope.node(wanted.left), scope.node(wanted.right)), None
+            if wanted.kind == "throughout":
+                phase = self.graph.add("variable", name=PHASE)
+            return self._of(f"require[{number}]", self._landed(scope, root, phase), "", ranges)
         if wanted.expression is not None:
-            return self._of(f"require[{number}]", scope.node(wanted.expression), "", ranges)
-        return self._of(f"require[{number}]", scope.name(f"next({wanted.state})"), wanted.by or "", ranges)
+            root = self._landed(scope, scope.node(wanted.expression))
+            return self._of(f"require[{number}]", root, "", ranges)
+        root = scope.name(f"next({wanted.state})")
+        if self._stirred(root, wanted.by or ""):
+            raise Bad(f"the effect of a signal within the stance follows {wanted.by}, so no sensitivity by it is known")
+        return self._of(f"require[{number}]", root, wanted.by or "", ranges)
+
+    def support(self, number: int, domain: Domain) -> Obligation:
+        """support[k]: what has to stay positive throughout a stance, over the set (proofs/stance.md)."""
+        bound, ranges = self._set(domain)
+        if self.motion is None:
+            raise ValueError("no stance")
+        phase = self.graph.add("variable", name=PHASE)
+        root = supported(self._scope(bound), self.motion, self.motion.positive[number - 1], phase)
+        return self._of(f"support[{number}]", root, "", ranges)
+
+    def growth(self, domain: Domain) -> Obligation:
+        """growth[s]: how a change of the state within the stance has grown by touchdown (proofs/stance.md (6))."""
+        bound, ranges = self._set(domain)
+        scope = self._scope(bound)
+        if self.motion is None:
+            raise ValueError("no stance")
+        phase = self.graph.add("variable", name=PHASE)
+        return self._of(f"growth[{self.state}]", grown(scope, self.motion, self.state, phase), "", ranges)
+
+    def coefficients(self) -> list[Obligation]:
+        """Coefficients of the rates over region, uncertain values and phases, for where they are not defined."""
+        m, phase = self.motion, self.graph.add("variable", name=PHASE)
+        entries = [k for row in (*m.matrix, m.free) for k in row if k is not None] if m is not None else []
+        return [self._of("rate", supported(self._scope({}), m, k, phase)) for k in entries if m is not None]
+
+    def spread(self, name: str) -> Ends:
+        """Ends that surely contain all values of a variable, also those that `over` of a range asks for."""
+        found = [self._occurs(self.stance.states.get(name) or self.claim.uncertain[name])]
+        found += [self._outer(r.over[name]) for r in self.claim.requirements if r.kind in RANGED and name in r.over]
+        return min(x[0] for x in found), max(x[1] for x in found)
 
     def ranging(self, gate: int) -> Obligation:
         """The range of any gate over the region and all uncertain values."""
@@ -197,6 +241,8 @@ class Obligations:
         for name, given in (over or {}).items():
             bound[name] = g.add("variable", name=name)
             ranges[name] = self._outer(given), self._inner(given)
+            if name in self.claim.uncertain or name in self.stance.states:
+                self._kept_by_over(name, ranges[name][0], domain)
         if domain.kind == "ball" and s not in bound:
             # suprema over the outer ball, points in the inner one: proofs/invariant-set.md (4)
             (low, high), (least, most) = domain.target, self.region()[0]
@@ -214,6 +260,39 @@ class Obligations:
                 bound[s] = self._kept(g.add("add", about, g.add("variable", name=f"error({s})")), domain)
         return bound, ranges
 
+    def _supporting(self) -> set[str]:
+        """Variables on which rests what has to stay positive throughout a stance."""
+        if self.motion is None:
+            return set()
+        scope, phase = self._scope({}), self.graph.add("variable", name=PHASE)
+        return {n for k in self.motion.positive for n in self.graph.variables(supported(scope, self.motion, k, phase))}
+
+    def _stirred(self, root: int, by: str) -> bool:
+        """Whether a signal's effect follows a marked name (proofs/stance.md (5))."""
+        n = len(self.motion.states) if self.motion is not None else 0
+        for k in self.graph.reached((root,)):
+            gate = self.graph.gates[k]
+            if gate.op == "flow" and int(gate.name.split(" ")[1]) > n:
+                met = (self.graph.gates[m] for m in self.graph.reached(gate.args))
+                if any(m.op == "mark" and m.name == by for m in met):
+                    return True
+        return False
+
+    def _kept_by_over(self, name: str, wanted: Ends, domain: Domain) -> None:
+        """A ball's centre keeps to the range its held quantities have in the claim, and signals to theirs."""
+        quantity = self.stance.states.get(name) or self.claim.uncertain[name]
+        if quantity.within:
+            raise Bad(f"over.{name}: a signal within the stance keeps its range; change it in [uncertain]")
+        if name in self._supporting():
+            _, (low, high), listed = self._cells(quantity)
+            beyond = listed or not (low <= wanted[0] and wanted[1] <= high)
+            if beyond or (name == self.state and domain.kind == "ball"):
+                raise Bad(f"over.{name}: the stance is shown to last within the claim's own range only; narrow it")
+        if domain.kind == "ball" and name in self.graph.variables(self._scope({}).name(f"target({self.state})")):
+            _, (low, high), listed = self._cells(quantity)
+            if listed or not (low <= wanted[0] and wanted[1] <= high):
+                raise Bad(f"over.{name}: the set moves with {name} and is known for its own range only; narrow it")
+
     def _kept(self, x: int, domain: Domain) -> int:
         """The state x, clipped to the region where the set as written may reach beyond it."""
         if domain.kind == "ball" and not domain.beyond:
@@ -224,11 +303,25 @@ class Obligations:
     def _of(
         self, name: str, root: int, by: str = "", ranges: Mapping[str, tuple[Ends, Ends]] | None = None
     ) -> Obligation:
-        variables = tuple(self._variable(v, root, ranges or {}) for v in self.graph.variables(root))
+        given = {PHASE: WHOLE, **self._signals(self.graph.variables(root)), **(ranges or {})}
+        variables = tuple(self._variable(v, root, given) for v in self.graph.variables(root))
         if prod(len(v.cells) for v in variables) > MOST_CELLS:
             raise Bad(f"more than {MOST_CELLS} combinations of library cells and listed values; shorten the lists")
-        reads = any(self.graph.gates[k].op == "reading" for k in self.graph.reached((root,)))
+        reads = any(self.graph.gates[k].op in ("reading", "flow") for k in self.graph.reached((root,)))
         return Obligation(name, root, by, variables, reads)
+
+    def _signals(self, met: list[str]) -> dict[str, tuple[Ends, Ends]]:
+        """Ranges of signals within a stance, as each continuous state answers them; points of several are constants."""
+        loose = [n for n in met if n in self.claim.uncertain and self.claim.uncertain[n].within]
+        if loose:
+            raise Bad(f"uncertain.{loose[0]}: a signal within the stance may only stand in dynamics.rate")
+        found: dict[str, tuple[Ends, Ends]] = {}
+        for d in self.motion.signals if self.motion is not None else ():
+            copies = [n for x in self.motion.states if (n := copy(d, x)) in met] if self.motion is not None else []
+            (outer,), inner, _ = self._cells(self.claim.uncertain[d])
+            middle = (inner[0] + inner[1]) / 2
+            found |= {n: (outer, inner if len(copies) == 1 else (middle, middle)) for n in copies}
+        return found
 
     def _variable(self, name: str, root: int, ranges: Mapping[str, tuple[Ends, Ends]]) -> Variable:
         cells, inside, listed = (
@@ -311,7 +404,10 @@ def not_yet(claim: Claim) -> str | None:
     if len(claim.stances) > 1 or stance.name:
         return "stance: claims with stances cannot be proved yet; state one map that covers every step"
     if stance.dynamics is not None:
-        return "dynamics: continuous stances cannot be proved yet; state the step-to-step map in closed form"
+        try:
+            Obligations(claim)
+        except Bad as problem:
+            return str(problem)
     if len(stance.states) > 1:
         return f"state: {len(stance.states)} states; only claims of one state can be proved yet"
     if claim.horizon != 1:
@@ -323,6 +419,12 @@ def not_yet(claim: Claim) -> str | None:
     if any(set(constant(w, claim.values)) != {Fraction(1)} for w in claim.weights.values()):
         return "metric.weights: only the weight 1 can be used with a single state yet; remove the table"
     for number, r in enumerate(claim.requirements, 1):
+        if r.during and stance.dynamics is not None:
+            try:
+                o = Obligations(claim)
+                o.growth(Domain("region", Fraction(0), (Fraction(0), Fraction(0))))
+            except Bad as problem:
+                return f"require[{number}]: {problem}"
         folded, ends = _folded(claim, r)
         unfollowed = sorted(({r.by or ""} & folded) | (set(r.over) & (folded | ends)))
         if unfollowed:
@@ -342,6 +444,9 @@ def _folded(claim: Claim, r: Requirement) -> tuple[set[str], set[str]]:
     ranges += [e for e in (r.constant, r.start, r.end) if e is not None] + list(claim.weights.values())
     texts = [*fixed.values(), *s.define.values(), *s.next.values(), *s.target.values(), *ranges]
     texts += [e for lib in claim.libraries for e in lib.at]
+    if s.dynamics is not None:
+        texts += [*s.dynamics.start.values(), *s.dynamics.rate.values()]
+        texts += [s.dynamics.duration] if s.dynamics.duration is not None else []
     texts += [e for e in (r.expression, r.left, r.right) if e is not None]
     exponents = {name for e in texts for n in e.nodes if n.op == "power" for name in (n.name or "").split()}
     ends = {name for e in ranges for name in e.names()}

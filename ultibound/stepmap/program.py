@@ -11,7 +11,8 @@ from fractions import Fraction
 class Step:
     """One register: `op` applied to earlier registers.
 
-    `orders` counts the derivatives of a library reading by each of its axes.
+    `orders` counts the derivatives of a library reading by each of its axes, or of a `flow` by each of its arguments
+    (normalised time, then the parameters); the name of a `flow` is the entry "i j" of the fundamental solution.
     """
 
     op: str

@@ -31,6 +31,15 @@ class Reading(sympy.Function):  # type: ignore[misc]  # sympy ships no types
         return Reading(self.args[0], self.args[1], *axes, *raised)
 
 
+class Flow(sympy.Function):  # type: ignore[misc]  # sympy ships no types
+    """An entry of the fundamental solution: Flow(entry, σ, parameters…, orders…), orders of derivatives by each."""
+
+    def fdiff(self, argindex: int = 1) -> Expr:
+        args, orders = flow_parts(self)
+        raised = [o + (k == argindex - 2) for k, o in enumerate(orders)]
+        return Flow(self.args[0], *args, *raised)
+
+
 class Corner(sympy.Function):  # type: ignore[misc]  # sympy ships no types
     """Corner(kind, a, b): the larger ("max", "abs" of a and -a) or smaller ("min") of two terms."""
 
@@ -41,6 +50,12 @@ class Pick(sympy.Function):  # type: ignore[misc]  # sympy ships no types
 
 def reading_parts(reading: Expr) -> tuple[list[Expr], list[int]]:
     rest = reading.args[2:]
+    half = len(rest) // 2
+    return list(rest[:half]), [int(o) for o in rest[half:]]
+
+
+def flow_parts(flow: Expr) -> tuple[list[Expr], list[int]]:
+    rest = flow.args[1:]
     half = len(rest) // 2
     return list(rest[:half]), [int(o) for o in rest[half:]]
 
@@ -163,6 +178,8 @@ def _native(graph: Graph, root: int, program: Program) -> dict[int, int]:
             registers[k] = program.add(Step("abs", (args[0], minus)))
         elif gate.op == "reading":
             registers[k] = program.add(Step("reading", args, gate.value, gate.name, (0,) * len(args)))
+        elif gate.op == "flow":
+            registers[k] = program.add(Step("flow", args, name=gate.name, orders=(0,) * len(args)))
         else:
             registers[k] = program.add(Step(gate.op, args, gate.value, gate.name))
     return registers
@@ -196,6 +213,10 @@ def _register(program: Program, e: Expr, known: dict[Expr, int]) -> int:
         axes, orders = reading_parts(e)
         args = tuple(_register(program, a, known) for a in axes)
         step = Step("reading", args, Fraction(int(e.args[0])), str(e.args[1]).removeprefix("column "), tuple(orders))
+    elif isinstance(e, Flow):
+        rest, orders = flow_parts(e)
+        args = tuple(_register(program, a, known) for a in rest)
+        step = Step("flow", args, name=str(e.args[0]).removeprefix("flow "), orders=tuple(orders))
     elif isinstance(e, Corner):
         step = Step(e.args[0].name, tuple(_register(program, a, known) for a in e.args[1:]))
     elif isinstance(e, Pick):
@@ -245,6 +266,8 @@ def _expression(gate: Gate, args: list[Expr]) -> Expr:
     if gate.op == "reading":
         column = sympy.Symbol(f"column {gate.name}")
         return Reading(sympy.Integer(int(gate.value or 0)), column, *args, *(sympy.Integer(0) for _ in args))
+    if gate.op == "flow":
+        return Flow(sympy.Symbol(f"flow {gate.name}"), *args, *(sympy.Integer(0) for _ in args))
     if gate.op in ("abs", "max", "min"):
         return Corner(sympy.Symbol(gate.op), args[0], -args[0] if gate.op == "abs" else args[1])
     if gate.op in UNARY:

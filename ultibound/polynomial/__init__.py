@@ -1,0 +1,1 @@
+"""Polynomials in floating point over batches of boxes: a search, not a proof."""
