@@ -74,7 +74,7 @@ def demo(folder: str) -> None:
                 continue
             write_whole(target, data)
             click.echo(f"wrote {target}", err=True)
-    main_claim = home / "walking.toml"
+    main_claim = home / "striding.toml"
     click.echo(f"proving {main_claim}: the same as `ultibound prove {main_claim}`", err=True)
     sys.exit(_prove(main_claim, None, {}, False))
 
@@ -109,7 +109,7 @@ def _settings(settings: tuple[str, ...]) -> dict[str, str]:
 def _prove(path: Path, output: Path | None, settings: dict[str, str], as_json: bool) -> int:
     from .claim import ClaimError, read_claim
     from .prove import prove as proved
-    from .report.cells import residual_by_cell
+    from .report.cells import residual_by_cell, residual_wanted
     from .report.terminal import cells, outcome, show
 
     try:
@@ -130,10 +130,10 @@ def _prove(path: Path, output: Path | None, settings: dict[str, str], as_json: b
         return 2
     unit = next(iter(claim.stances[0].states.values())).unit
     show(outcome(claim.title or path.name, certificate.results, unit), as_json)
-    if certificate.results["route"] == "split":
+    if "split" in certificate.results["routes"]:
         found = residual_by_cell(certificate)
         if len(found) > 1:
-            show(cells(found, unit), as_json)
+            show(cells(found, unit, residual_wanted(claim, certificate.results, found)), as_json)
     click.echo(f"certificate: {target}  (re-verify: ultibound check {target})", err=as_json)
     if as_json:
         click.echo(json.dumps({**certificate.results, "certificate": str(target)}, ensure_ascii=False, sort_keys=True))

@@ -5,22 +5,31 @@ from __future__ import annotations
 from dataclasses import dataclass
 from fractions import Fraction
 from itertools import product
+from typing import Any
 
 from ..certificate.certificate import Certificate
 from ..checker.courses import arithmetic
 from ..checker.derive import Derivation
 from ..checker.forms import walk
-from ..checker.ranges import Evaluator
+from ..checker.ranges import Ends, Evaluator
+from ..checker.reals import Undefined
 from ..checker.rules import Proof
 from ..checker.statement import read_statement
+from ..claim import Claim
+from ..claim.constants import constant
 
 
 @dataclass(frozen=True, slots=True)
 class Cell:
-    """A library cell, by the ends of what reads it, and the proved residual in it (without the target's movement)."""
+    """A library cell, by the ends of what reads it, and the residual in it (without the target's movement).
+
+    `residual` is proved. `interpolated` is an estimate: the part that comes from interpolation between the gaits, the
+    value in the middle of the cell less the mean over its corners, all else in the middle of its range.
+    """
 
     ends: dict[str, tuple[Fraction, Fraction]]
     residual: Fraction
+    interpolated: float
 
 
 def residual_by_cell(certificate: Certificate) -> list[Cell]:
@@ -39,18 +48,62 @@ def residual_by_cell(certificate: Certificate) -> list[Cell]:
         return []
     for raw in entries["proof"][: max(line["uses"])]:
         proof.add(raw)
-    domain = proof.lines[line["uses"][0]].domain
+    domain, flows = proof.lines[line["uses"][0]].domain, proof.lines[line["uses"][-1]].flows
     meaning = derivation.meaning(name, domain)
     cut = [k for k, v in enumerate(meaning.variables) if len(v.cells) > 1 and not v.listed]
     if not cut:
         return []
     names, bits = [v.name for v in meaning.variables], line["witness"]["bits"]
     libraries = derivation.statement.libraries
-    evaluator = Evaluator(derivation.terms, meaning.root, meaning.by, names, libraries, arithmetic(bits))
-    found: dict[tuple[tuple[Fraction, Fraction], ...], Fraction] = {}
+    evaluator = Evaluator(derivation.terms, meaning.root, meaning.by, names, libraries, arithmetic(bits), flows)
+    found: dict[tuple[Ends, ...], Fraction] = {}
     tops = list(product(*(v.cells for v in meaning.variables)))
     for top, tree in zip(tops, line["witness"]["trees"], strict=True):
         low, high = evaluator.a.ends(walk(evaluator, [top], [tree])[0])
         cell = tuple(top[k] for k in cut)
         found[cell] = max(found.get(cell, Fraction(0)), -low, high)
-    return [Cell(dict(zip((names[k] for k in cut), cell, strict=True)), x) for cell, x in found.items()]
+    middles = [(v.cells[0][0] + v.cells[-1][1]) / 2 for v in meaning.variables]
+
+    def at(places: tuple[Fraction, ...]) -> float:
+        box = [(x, x) for x in middles]
+        for k, x in zip(cut, places, strict=True):
+            box[k] = x, x
+        low, high = evaluator.a.ends(evaluator.run(box, False).v)
+        return float(low + high) / 2
+
+    def interpolated(cell: tuple[Ends, ...]) -> float:
+        try:
+            corners = [at(c) for c in product(*cell)]
+            return abs(at(tuple((a + b) / 2 for a, b in cell)) - sum(corners) / len(corners))
+        except Undefined:
+            return float("nan")
+
+    return [Cell({names[k]: e for k, e in zip(cut, c, strict=True)}, x, interpolated(c)) for c, x in found.items()]
+
+
+def finer(found: list[Cell], wanted: float) -> float | None:
+    """By what factor all spacings of the library may change for the residual to be as wanted; an estimate.
+
+    Interpolation falls with the square of the spacing; what else is in the residual stays. None where no spacing does.
+    """
+    rest = max(float(c.residual) - c.interpolated for c in found)
+    most = max(c.interpolated for c in found)
+    if not (most > 0 and wanted > rest):
+        return None
+    return float(
+        min(
+            ((wanted - (float(c.residual) - c.interpolated)) / c.interpolated) ** 0.5
+            for c in found
+            if c.interpolated > 0
+        )
+    )
+
+
+def residual_wanted(claim: Claim, results: dict[str, Any], found: list[Cell]) -> float | None:
+    """The residual in a cell with which the split route's gain gives the least bound asked for; None where none is."""
+    asked = [r.constant for r in claim.requirements if r.kind == "bound" and r.constant is not None and not r.over]
+    gain, residual = results["routes"]["split"]["gain"], results["routes"]["split"]["residual"]
+    if not asked or gain is None or Fraction(gain["upper"]) >= 1:
+        return None
+    moved = Fraction(residual["upper"]) - max(c.residual for c in found)  # of the target, in a step
+    return float(min(constant(c, claim.values)[0] for c in asked) * (1 - Fraction(gain["upper"])) - moved)

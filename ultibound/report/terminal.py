@@ -8,13 +8,13 @@ from rich.console import Console, Group, RenderableType
 from rich.table import Table
 from rich.text import Text
 
-from .cells import Cell
+from .cells import Cell, finer
 
 CAUTION = (
     "This certifies the model stated in the claim, not a machine. It is neither a risk assessment nor a statement of "
     "conformity; those remain with the standards and the competent persons that apply."
 )
-MOST = 30  # rows of cells
+MOST = 12  # rows of cells
 STYLES = {"proved": "bold green", "refuted": "bold red", "undecided": "bold yellow"}
 
 
@@ -68,22 +68,37 @@ def _routes(results: dict[str, Any], unit: str) -> list[RenderableType]:
     return [Text(""), table]
 
 
-def cells(found: list[Cell], unit: str) -> RenderableType:
-    """The proved residual of the split route, a cell of the gait library a row, the largest first."""
+def cells(found: list[Cell], unit: str, wanted: float | None = None) -> RenderableType:
+    """The proved residual of the split route, a cell of the gait library a row, the largest first.
+
+    `wanted` is the residual that would do for the bound asked for; the spacing for it is an estimate.
+    """
     table = Table(title=Text("residual of the interpolated gaits, by library cell"), title_justify="left")
     table.show_edge, table.pad_edge = False, False
     for name in found[0].ends:
         table.add_column(name)
-    table.add_column(f"residual {unit}".strip())
-    table.add_column("")
+    for heading in (f"residual {unit}".strip(), "by interpolation*", ""):
+        table.add_column(heading)
     most = max(float(c.residual) for c in found)
     for cell in sorted(found, key=lambda c: -c.residual)[:MOST]:
         share = float(cell.residual) / most if most else 0.0
         ranges = [f"{float(a):.4g} to {float(b):.4g}" for a, b in cell.ends.values()]
-        table.add_row(*ranges, f"≤ {float(cell.residual):.5g}", "#" * round(20 * share))
+        table.add_row(*ranges, f"≤ {float(cell.residual):.5g}", f"{cell.interpolated:.2g}", "#" * round(10 * share))
     if len(found) > MOST:
-        table.add_row(f"and {len(found) - MOST} more", *[""] * (len(found[0].ends) + 1))
-    return table
+        table.add_row(f"and {len(found) - MOST} more", *[""] * (len(found[0].ends) + 2))
+    return Group(Text(""), table, Text(f"* an estimate, not proved{_spacing(found, wanted)}"))
+
+
+def _spacing(found: list[Cell], wanted: float | None) -> str:
+    """What spacing of the library would do for a wanted residual, to end a sentence with."""
+    if wanted is None:
+        return ""
+    times = finer(found, wanted)
+    if times is None:
+        return "; for the bound asked for no spacing of the gaits alone would do: the rest of the residual is too large"
+    widest = {n: max(float(c.ends[n][1] - c.ends[n][0]) for c in found) for n in found[0].ends}
+    spacing = ", ".join(f"{n} {times * w:.2g}" for n, w in widest.items())
+    return f"; for the bound asked for, by the split route, gaits every {spacing} would do (also an estimate)"
 
 
 def show(what: RenderableType, to_error: bool) -> None:
