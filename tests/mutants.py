@@ -1,11 +1,11 @@
 """Mutants of the checker: one comparison, sign or rounding direction of one module turned at a time.
 
 A check that no test holds to can be lost unseen. So each is turned round in a copy of the package, never in place,
-and a battery must notice. One of certificates (tests/checker/test_boundaries.py): a certificate of its fixed list then
-gets another verdict, place or reason, or an assertion about one function fails. One of claims, for the modules that
-read them (tests/checker/test_reading.py): a text of the corpus is then accepted, refused or read otherwise, or an
-assertion fails. `EQUIVALENT` lists the turned expressions that change no verdict, each with its reason; an entry whose
-expression is gone, or that the battery notices, is an error.
+and a battery must notice. One of certificates (tests/checker/test_boundaries.py, test_stance_boundaries.py): a
+certificate of its fixed list then gets another verdict, place or reason, or an assertion about one function fails. One
+of claims, for the modules that read them (tests/checker/test_reading.py): a text of the corpus is then accepted,
+refused or read otherwise, or an assertion fails. `EQUIVALENT` lists the turned expressions that change no verdict, each
+with its reason; an entry whose expression is gone, or that the battery notices, is an error.
 """
 
 from __future__ import annotations
@@ -18,6 +18,7 @@ import shutil
 import signal
 import sys
 import tempfile
+from collections import Counter
 from collections.abc import Callable, Iterator, Sequence
 from contextlib import contextmanager
 from dataclasses import dataclass
@@ -35,7 +36,7 @@ NEGATED: dict[type, type] = {
 SIGNS: dict[type, type] = {ast.Add: ast.Sub, ast.Sub: ast.Add}
 DIRECTIONS = {"min": "max", "decimal_down": "decimal_up", "bisect_left": "bisect_right"}
 DIRECTIONS |= {other: name for name, other in DIRECTIONS.items()}
-Key = tuple[str, str, str, str]  # module, function, expression, what it became
+Key = tuple[str, str, str, str]  # module, function, expression, what it became (and which of several alike)
 
 
 @dataclass(frozen=True)
@@ -115,8 +116,13 @@ def changed_trees(source: str) -> Iterator[tuple[ast.Module, tuple[str, str, str
 
 
 def mutants(module: str, source: str) -> list[Mutant]:
-    """All mutants of one module's source."""
-    return [Mutant((module, *what), source, n) for n, (_, what) in enumerate(changed_trees(source))]
+    """All mutants of one module's source; of several that read alike in one function, the later are numbered."""
+    found, known = list[Mutant](), Counter[tuple[str, str, str]]()
+    for n, (_, (function, old, new)) in enumerate(changed_trees(source)):
+        known[function, old, new] += 1
+        rank = known[function, old, new]
+        found.append(Mutant((module, function, old, new if rank == 1 else f"{new} ({rank})"), source, n))
+    return found
 
 
 def put(parent: ast.AST, name: str, k: int | None, node: ast.AST) -> None:
@@ -222,15 +228,18 @@ EQUIVALENT: dict[Key, str] = {
     ("ranges", "Evaluator.term", "payload != self.by", "payload == self.by"):
         "a mark is the name a derivative is taken by; below it nothing has a derivative by that name, so dg is empty",
     ("ranges", "Evaluator.corner", "side > 0", "side >= 0"): "a side is 1 or -1",
+    ("ranges", "Evaluator.corner", "side > 0", "side >= 0 (2)"): "a side is 1 or -1",
     ("ranges", "Evaluator.taken", "side > 0", "side >= 0"): "a side is 1 or -1",
     ("ranges", "Evaluator.derivatives", "n > 1", "n >= 1"): "a power that is a term has an exponent of at least 2",
     ("ranges", "Evaluator.derivatives", "n > 2", "n >= 2"): "the power 0 of an interval is 1",
     ("ranges", "Evaluator.cell", "len(corners) // 2", "-(-len(corners) // 2)"): "a cell has an even number of corners",
     ("forms", "face", "side > 0", "side >= 0"): "a side is 1 or -1",
+    ("forms", "face", "side > 0", "side >= 0 (2)"): "a side is 1 or -1",
     ("forms", "second_order", "j > i", "j >= i"): "j == i is the branch before",
     ("forms", "second_order", "j > i", "j <= i"): "the other half of a symmetric table",
     ("exact", "Exact.power", "low <= 0 <= high", "low < 0 <= high"): "at low = 0 the least magnitude is 0 as well",
     ("exact", "Exact.power", "low <= 0 <= high", "low <= 0 < high"): "at high = 0 the least magnitude is 0 as well",
+    ("exact", "Exact.power", "abs(high)", "high (2)"): "the magnitude of low is the larger one wherever high is below 0",
     ("exact", "Exact.power", "abs(high)", "high"):
         "only where the exponent is even: a negative high is the least magnitude, and its power has the same value",
     **{("reals", "Scaled.mul", f"{x} {sign}= 0", f"{x} {sign} 0"): "a product with an end at 0 is 0 whichever other end is taken"
@@ -253,6 +262,20 @@ EQUIVALENT: dict[Key, str] = {
     ("numerals", "placed", "power < 0", "power <= 0"): "a power of 0 has been written out by then",
     ("statement", "read_statement", "len(stances) > 1", "len(stances) >= 1"):
         "a claim with one stance is never longer than the limit of a claim's text, which is below this one",
+    ("results", "Results.pushed_within", "growth <= 0", "growth < 0"): "at touchdown itself a change is what it was: growth is never below 1",
+    ("models", "Models.spans", "(e[k] - n) // 2", "-(-(e[k] - n) // 2)"): "n runs in steps of 2 from e[k]",
+    ("models", "Models.spans", "e[k] - n", "e[k] + n"): "a binomial of the other half of its symmetric row",
+    ("models", "Models.spans", "p + share * q", "p - share * q"): "all coefficients are turned alike, and magnitudes are taken",
+    ("models", "Models.least", "bound <= 0", "bound < 0"):
+        "a bound of 0 is below a quarter of the middle, unless both are 0: then the polynomial is, and is refused either way",
+    ("models", "gather", "i > j", "i >= j"): "at i == j both are 0",
+    ("models", "steepest", "degrees[0] ** 2 * (degrees[0] ** 2 - 1) // 3", "-(-(degrees[0] ** 2 * (degrees[0] ** 2 - 1)) // 3)"):
+        "n n (n n - 1) is a multiple of 3",
+    ("rates", "Coefficients.reading", "len(corners) // 2", "-(-len(corners) // 2)"): "a cell has an even number of corners",
+    ("flows", "spread", "x >> zeros", "-(-x >> zeros)"): "only zeros are shifted out",
+    ("flows", "divisions", "lines[0] < g < lines[-1]", "lines[0] <= g < lines[-1]"): "the first cut is among the cuts",
+    ("flows", "divisions", "lines[0] < g < lines[-1]", "lines[0] < g <= lines[-1]"): "the last cut is among the cuts",
+    ("flows", "divisions", "set(inside) <= set(lines)", "set(inside) < set(lines)"): "the ends are no lines inside",
     ("tables", "read_library", "set(axes) <= set(header)", "set(axes) < set(header)"):
         "where the axes are all columns there are, the other half of the condition refuses",
 }  # fmt: skip

@@ -11,7 +11,7 @@ import random
 
 import pytest
 
-from tests.checker import test_boundaries, test_reading
+from tests.checker import test_boundaries, test_reading, test_stance_boundaries
 from tests.mutants import EQUIVALENT, Battery, Copies, Mutant, campaign, mutants, table
 
 LONG = os.environ.get("ULTIBOUND_LONG") == "1"
@@ -29,7 +29,9 @@ PROOFS = (
     "terms",
     "exact",
     "reals",
+    "names",
 )
+STANCES = ("calculus", "motion", "models", "rates", "flows")
 READING = ("grammar", "numerals", "statement", "tables", "scope", "command")
 SAMPLE, SEED = 32, 20260101
 MOST_EQUIVALENT = 0.05
@@ -42,15 +44,16 @@ def copies() -> Copies:
 
 @pytest.fixture(scope="module")
 def found(copies: Copies) -> dict[str, list[Mutant]]:
-    return {m: mutants(m, copies.source[m]) for m in PROOFS + READING}
+    return {m: mutants(m, copies.source[m]) for m in PROOFS + STANCES + READING}
 
 
 @pytest.fixture(scope="module")
 def batteries(copies: Copies) -> dict[str, Battery]:
     """Of each module: what notices nothing about the unchanged copy."""
-    proofs, reading = Battery(test_boundaries.CASES), Battery(test_reading.CASES, 400)
+    reading, stances = Battery(test_reading.CASES, 400), Battery(test_stance_boundaries.CASES)
+    proofs = Battery(test_boundaries.CASES | {f"stance: {n}": q for n, q in test_stance_boundaries.CASES.items()})
     assert proofs.noticed(copies, {}) is None and reading.noticed(copies, {}) is None
-    return dict.fromkeys(PROOFS, proofs) | dict.fromkeys(READING, reading)
+    return dict.fromkeys(PROOFS, proofs) | dict.fromkeys(STANCES, stances) | dict.fromkeys(READING, reading)
 
 
 def test_each_equivalent_stands_in_the_source(found: dict[str, list[Mutant]]) -> None:

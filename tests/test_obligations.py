@@ -9,6 +9,7 @@ from pathlib import Path
 import pytest
 
 from tests.corpus import CASES, Case
+from tests.stances import GAITS, PARTS
 from ultibound.checker.derive import Derivation
 from ultibound.checker.derive import Domain as CheckerDomain
 from ultibound.checker.rules import SHAPES
@@ -70,6 +71,45 @@ def test_both_lists_mean_the_same(case: Case, ball: bool) -> None:
         ]
         assert spelled_out(gates, obligation.root) == spelled_out(d.terms.all, meaning.root)
     assert o.region() == d.region()
+
+
+@pytest.mark.parametrize("name", PARTS)
+def test_both_lists_mean_the_same_stance(name: str) -> None:
+    """Matrix, free term, signals, what has to be positive, and the obligations that only stances have."""
+    claim = parse_claim(PARTS[name], {}, {"gaits.csv": GAITS} if "gaits.csv" in PARTS[name] else {}, "c")
+    o = Obligations(claim)
+    d = Derivation(read_statement(claim.text, claim.settings, claim.data))
+    mine, theirs = o.motion, d.motion
+    assert mine is not None and theirs is not None
+    assert (mine.states, mine.signals) == (theirs.states, theirs.signals)
+    assert [(p.name, p.grid) for p in mine.parameters] == [(p.name, p.grid) for p in theirs.parameters]
+
+    def same(a: int | None, b: int | None) -> None:
+        assert (a is None) == (b is None)
+        gates = [(g.op, g.args, g.value if g.op in ("number", "power") else g.name or None) for g in o.graph.gates]
+        if a is not None and b is not None:
+            assert spelled_out(gates, a) == spelled_out(d.terms.all, b)
+
+    for row, other in zip(
+        (*mine.matrix, mine.free, *mine.forced), (*theirs.matrix, theirs.free, *theirs.forced), strict=True
+    ):
+        for a, b in zip(row, other, strict=True):
+            same(a, b)
+    for a, b in zip(mine.positive, theirs.positive, strict=True):
+        same(a, b)
+    for ball in (False, True):
+        domain = Domain("ball" if ball else "region", Fraction(1, 8), (Fraction(1, 5), Fraction(4, 5)))
+        other_domain = CheckerDomain(ball, Fraction(1, 8), (Fraction(1, 5), Fraction(4, 5)))
+        listed = [o.image(), o.miss(), o.slope(domain), *(o.support(k + 1, domain) for k in range(len(mine.positive)))]
+        listed += [o.requirement(n, domain) for n, r in enumerate(claim.requirements, 1) if r.kind in RANGED]
+        listed += [o.growth(domain)] if any(r.during for r in claim.requirements) else []
+        listed += [o.split_slope(domain), o.split_residual(domain)] if claim.correction else []
+        for obligation in listed:
+            meaning = d.meaning(obligation.name, other_domain)
+            assert [(v.name, v.cells, v.inside) for v in obligation.variables] == [
+                (v.name, v.cells, v.inside) for v in meaning.variables
+            ]
+            same(obligation.root, meaning.root)
 
 
 def test_enough_claims_were_compared() -> None:

@@ -17,6 +17,7 @@ from typing import Any
 import pytest
 
 from tests.conftest import proved
+from tests.stances import GAITS, HEIGHT, LIBRARY, PUSHING, stance
 from ultibound.checker import check
 from ultibound.checker.document import canonical, digest
 from ultibound.checker.rules import Line, Proof, Rejected
@@ -107,7 +108,19 @@ gap = 0.02
 """
 
 
+def stances() -> str:
+    """A stance over two cells of a library, with a gust, a push and a limit throughout."""
+    return stance(
+        rates=PUSHING + ' + gust"', define=HEIGHT, rest="[constants]\ng = 9.81\n" + LIBRARY + "[effort]\ngap = 0.05\n",
+        uncertain="T = [0.40, 0.41]\nv_cmd = { range = [0.4, 0.55], held = true, change = 0.01 }\nloss = [0.024, 0.026]\n"
+        "gust = { range = [-0.05, 0.05], within = true }",
+        requires=("settles", "push(v, during) >= 0.01", "throughout(x <= 0.5)", "value(xd)", "gain <= 0.4", "gain <= 0.2"),
+    )  # fmt: skip
+
+
 def sample(name: str) -> dict[str, Any]:
+    if name == "stance":
+        return proved(stances(), data={"gaits.csv": GAITS}).entries
     if name in ("split", "over"):
         return proved(SPLIT if name == "split" else OVER).entries
     if name == "ball":
@@ -167,7 +180,18 @@ def lines_checked_once() -> Iterator[None]:
 
 @pytest.fixture(
     scope="module",
-    params=["pendulum", "overstep", "walking", "saturated", "restless", "interpolated", "ball", "split", "over"],
+    params=[
+        "pendulum",
+        "overstep",
+        "walking",
+        "saturated",
+        "restless",
+        "interpolated",
+        "ball",
+        "split",
+        "over",
+        "stance",
+    ],
 )
 def entries(request: pytest.FixtureRequest) -> dict[str, Any]:
     return sample(request.param)
@@ -239,6 +263,8 @@ MORE = {
     "lowest": -1,
     "from": -1,
     "steps": 1,
+    "error": -1,
+    "outer": -1,
 }
 
 
@@ -334,6 +360,9 @@ def test_a_rule_or_use_exchanged_is_rejected(entries: dict[str, Any]) -> None:
             "path",
             "ultimate-bound",
             "squares",
+            "trajectory",
+            "largest-ball",
+            "smaller-ball",
         ):
             if rule != line["rule"]:
 
@@ -386,6 +415,72 @@ def test_a_cut_tree_is_rejected(entries: dict[str, Any]) -> None:
             rejected(spoiled(entries, spoil), f"proof line {number + 1}")
 
 
+def test_a_flow_spoiled_in_one_place_is_rejected() -> None:
+    """Each part of a trajectory's witness, changed so that it proves less than what is concluded or has no shape."""
+    entries = sample("stance")
+    (number,) = [n for n, x in enumerate(entries["proof"]) if x["rule"] == "trajectory"]
+    witness = entries["proof"][number]["witness"]
+    text = witness["cells"][0][0]
+    first = text.split(" ")
+
+    def cells(*changed: Any) -> list[Any]:
+        return [list(changed), *witness["cells"][1:]]
+
+    cuts, cut = witness["cuts"], next(n for n in witness["cuts"] if n != "T")
+    spoils: list[tuple[str, Any, str]] = [
+        ("cells", cells(" ".join([str(int(first[0]) + 2**50), *first[1:]])), "error"),
+        ("cells", cells(" ".join(["0", *first[1:]])), "error"),
+        ("cells", cells(" ".join(first[:-1])), "cells[0][0]"),
+        ("cells", cells(text + " 0"), "cells[0][0]"),
+        ("cells", cells("+" + text), "cells[0][0]"),
+        ("cells", cells(text.replace(" ", "  ", 1)), "cells[0][0]"),
+        ("cells", cells(text, text), "cells[0]"),
+        ("cells", witness["cells"][1:], "cells"),
+        ("cells", [*witness["cells"], witness["cells"][0]], "cells"),
+        ("pieces", ["0", "1/2"], "pieces"),
+        ("pieces", ["1/10", "1"], "pieces"),
+        ("pieces", ["0", "1/2", "1"], "cells[0]"),
+        ("degrees", [witness["degrees"][0] - 1, witness["degrees"][1]], "cells[0][0]"),
+        ("degrees", [witness["degrees"][0], 13], "degrees"),
+        ("degrees", [witness["degrees"][0], True], "degrees"),
+        ("bits", witness["bits"] + 1, "error"),
+        ("bits", 401, "bits"),
+        ("cuts", {n: x for n, x in cuts.items() if n != cut}, "cuts"),
+        ("cuts", {**cuts, cut: cuts[cut][::-1]}, f"cuts.{cut}"),
+        ("cuts", {**cuts, cut: [cuts[cut][0], cuts[cut][-1]]}, f"cuts.{cut}"),
+        ("cuts", {**cuts, cut: [cuts[cut][0], "1/2", "0.7"]}, "error"),
+    ]
+    for key, value, reason in spoils:
+
+        def spoil(e: dict[str, Any], key: str = key, value: Any = value) -> None:
+            e["proof"][number]["witness"][key] = value
+
+        rejected(spoiled(entries, spoil), f"proof line {number + 1}: {reason}")
+    for k in range(len(first)):  # every coefficient, by an amount that shows
+        changed = [*first[:k], str(int(first[k]) + 2 ** (witness["bits"] - 12)), *first[k + 1 :]]
+
+        def bend(e: dict[str, Any], changed: list[str] = changed) -> None:
+            e["proof"][number]["witness"]["cells"][0][0] = " ".join(changed)
+
+        if k % 7 == 0:
+            rejected(spoiled(entries, bend), f"proof line {number + 1}: error")
+
+
+def test_a_leg_that_pulls_has_no_set() -> None:
+    """z'' below -g somewhere: the same lines without that of its support, or with one over another set, prove no set."""
+    entries = sample("stance")
+    supports = [n for n, x in enumerate(entries["proof"], 1) if x["proves"].startswith("support")]
+    assert len(supports) >= 3
+    for gone in supports:
+
+        def spoil(e: dict[str, Any], gone: int = gone) -> None:
+            del e["proof"][gone - 1]
+            for line in e["proof"]:
+                line["uses"] = [n - (n > gone) for n in line["uses"]]
+
+        assert check(spoiled(entries, spoil)).status == "invalid"
+
+
 def test_another_claim_is_rejected(entries: dict[str, Any]) -> None:
     """A harder claim under the same proof: wider ranges, another gain, other data."""
     text = entries["claim"]["text"]
@@ -393,7 +488,7 @@ def test_another_claim_is_rejected(entries: dict[str, Any]) -> None:
         ("kappa = 0.1 ", "kappa = 0.02 "), ("kappa = 0.09", "kappa = 0.01"), ("kappa = 0.3 ", "kappa = 0.05 "),
         ("T = { range = [0.36, 0.40]", "T = { range = [0.30, 0.40]"), ("[0.37, 0.38]", "[0.32, 0.46]"),
         ("d = [-0.05, 0.05]", "d = [-0.09, 0.05]"), ("values = [0.1, 0.2]", "values = [0.1, 0.2, 2]"),
-        ("change = 0.01", "change = 0.05"), ("change = 0.005", "change = 0.05"), ("limit = 0.035", "limit = 0.01"), ("kappa = 0.6", "kappa = 0.2"), ("kappa = [0.4, 0.6]", "kappa = [0.1, 0.6]"), ("d = [-0.2, 0.2]", "d = [-0.4, 0.2]"), ("kappa = 0.3\n", "kappa = 0.1\n"), ('correction = ["shift"]', ""), ("g = 9.81", "g = 9.5"), ("range = [-0.2, 1.0]", "range = [-0.1, 0.9]"),
+        ("change = 0.01", "change = 0.05"), ("change = 0.005", "change = 0.05"), ("limit = 0.035", "limit = 0.01"), ("kappa = 0.6", "kappa = 0.2"), ("kappa = [0.4, 0.6]", "kappa = [0.1, 0.6]"), ("d = [-0.2, 0.2]", "d = [-0.4, 0.2]"), ("kappa = 0.3\n", "kappa = 0.1\n"), ('correction = ["shift"]', ""), ("g = 9.81", "g = 9.5"), ("T = [0.40, 0.41]", "T = [0.39, 0.41]"), ("[-0.05, 0.05], within", "[-0.06, 0.05], within"), ("loss = [0.024, 0.026]", "loss = [0.02, 0.026]"), ("x <= 0.5", "x <= 0.05"), ("range = [-0.2, 1.0]", "range = [-0.1, 0.9]"),
     ] if a in text]  # fmt: skip
     assert harder
     for old, new in harder:
@@ -405,10 +500,11 @@ def test_another_claim_is_rejected(entries: dict[str, Any]) -> None:
     if entries["claim"]["data"]:
 
         def data(e: dict[str, Any]) -> None:
-            e["claim"]["data"][0]["text"] = e["claim"]["data"][0]["text"].replace("0.4,0.36,", "0.4,0.36,1")
+            text = e["claim"]["data"][0]["text"].replace("0.4,0.36,", "0.4,0.36,1")
+            e["claim"]["data"][0]["text"] = text.replace("0.5,0.42,0.6,", "0.5,0.42,0.7,")
 
         assert check(spoiled(entries, data)).status == "invalid"
-    if "kappa" in text:
+    if "kappa =" in text:
 
         def setting(e: dict[str, Any]) -> None:
             e["claim"]["set"] = {"kappa": "0.02"}

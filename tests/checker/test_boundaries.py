@@ -14,7 +14,7 @@ import json
 import re
 from collections.abc import Callable, Iterator, Sequence
 from contextlib import contextmanager
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from fractions import Fraction as Q
 from functools import cache
 from itertools import pairwise, product
@@ -103,7 +103,7 @@ class Draft:
         asked = []
         for that, verdict in requirements:
             entry = {"that": that, "verdict": verdict, "value": None, "limited_by": "nothing more is claimed"}
-            if that.startswith(("value", "sensitivity", "always")):
+            if that.startswith(("value", "sensitivity", "always", "throughout")):
                 entry["attained"] = None
             asked.append(entry)
         return {
@@ -247,7 +247,7 @@ def region(text: str, requires: Sequence[str] = (), points: bool = True) -> Draf
     """The lines of v⁺ = v/2 + w: 1 target, 2 ball, 3 image, 4 invariant, 5 slope, 6 miss, 7 pair, 8 bound, then points."""
     d = Draft(text)
     d.range("target[v]", "0", "0")
-    d.theorem("largest-ball", "ball", [1], radius="1")
+    d.theorem("smaller-ball", "ball", [1], radius="1")
     d.range("image[v]", "-1", "1")
     d.theorem("invariant-region", "invariant", [1, 3])
     d.range("slope[v,v]", "1/2", "1/2", [4])
@@ -384,8 +384,8 @@ def malformed_lines() -> None:
     reject("uses two sets", but(BASE, "proof 4 uses", [4, 4]), "proof line 5", "the one line that gives the set")
     reject("uses two lines, the first a set", but(BASE, "proof 4 uses", [4, 1]), "proof line 5", "the one line that gives the set")
     reject("uses no set", but(BASE, "proof 4 uses", [3]), "proof line 5", "the one line that gives the set")
-    reject("rests on a set", but(BASE, "proof 5 uses", [4]), "proof line 6", "this obligation rests on no other line")
-    reject("image rests on a set", but(BASE, "proof 2 uses", [2]), "proof line 3", "this obligation rests on no other line")
+    reject("rests on a set", but(BASE, "proof 5 uses", [4]), "proof line 6", "this obligation rests on no")
+    reject("image rests on a set", but(BASE, "proof 2 uses", [2]), "proof line 3", "this obligation rests on no")
     reject("slope without a set", but(BASE, "proof 4 uses", []), "proof line 5", "slope[v,v] needs a line that gives its set")
     for key, value in (("trees", GONE), ("more", "")):
         reject(f"range: {key}", but(BASE, f"proof 0 witness {key}", value), "proof line 1", "witness: the keys of range are bits, trees")
@@ -427,7 +427,7 @@ malformed_lines()
 
 def one_of_each() -> None:
     """A line proved twice, a line that serves nothing, and the ties between points."""
-    for number, reason in ((2, "ball is proved more than once by largest-ball"), (7, "slope is proved more than once by slope"), (8, "bound[slope] is proved more than once"), (4, "invariant is proved more than once")):
+    for number, reason in ((2, "ball is proved more than once by smaller-ball"), (7, "slope is proved more than once by slope"), (8, "bound[slope] is proved more than once"), (4, "invariant is proved more than once")):
         twice = but(BASE, "proof", [*BASE["proof"], BASE["proof"][number - 1]])
         reject(f"line {number} twice", twice, "results", reason)
     for number in (1, 3, 5, 6):
@@ -438,12 +438,15 @@ def one_of_each() -> None:
         reject(f"point {number} again", twice, "proof", "line 12 serves no later line and no result")
     without = but(BASE, "proof", [line for n, line in enumerate(BASE["proof"], 1) if n not in (9, 10, 11)])
     accept("no points", without)
-    reject("no ball", but(without, "proof", without["proof"][:1]), "results", "the proof has no ball about the target")
+    reject("no ball", but(without, "proof", without["proof"][:1]), "results", "the proof has not exactly one ball about the target")
+    largest = {**BASE["proof"][1], "rule": "largest-ball", "uses": [1, 9], "concludes": {"outer": "1", "radius": "1"}}
+    reject("a ball by both rules", but(BASE, "proof", [*BASE["proof"], largest]), "results", "the proof has not exactly one ball about the target")
+    accept("the largest ball beside the region", but(without, "proof", [without["proof"][0], BASE["proof"][8], *[{**line, "uses": [n + (n > 1) for n in line["uses"]]} for line in (largest, *without["proof"][2:])]], "proof 2 uses", [1, 2]))
     reject("no lines", but(BASE, "proof", []), "proof", "a proof has at least one line")
     reject("lines no list", but(BASE, "proof", {"1": BASE["proof"][0]}), "proof", "a proof has at least one line")
     two = Draft(PLAIN)
     two.range("target[v]", "0", "0")
-    two.theorem("largest-ball", "ball", [1], radius="1")
+    two.theorem("smaller-ball", "ball", [1], radius="1")
     accept("ball alone", two.entries(None, [("settles", "undecided")]))
     reject("ball alone, a set claimed", two.entries("ball", [("settles", "undecided")]), "results", "results.set.kind: 'ball' is claimed, None was derived")
     nothing = two.entries(None, [("settles", "undecided")])
@@ -467,7 +470,7 @@ one_of_each()
 
 def lines_of(d: Draft, slope: tuple[str, str], miss: tuple[str, str], pair: tuple[str, str], image: tuple[str, str], bound: str | None) -> None:
     d.range("target[v]", "0", "0")
-    d.theorem("largest-ball", "ball", [1], radius="1")
+    d.theorem("smaller-ball", "ball", [1], radius="1")
     d.range("image[v]", *image)
     d.theorem("invariant-region", "invariant", [1, 3])
     d.range("slope[v,v]", *slope, uses=[4])
@@ -529,27 +532,39 @@ PART = ["undecided", "undecided", "refuted", "undecided", "undecided", "undecide
 
 
 def ball(asked: Sequence[str], image: tuple[str, str, str], state: str = "[-1, 4]", way: str = "", radius: str = "1", residual: str = "1/2",
-         target: bool = True) -> Draft:
-    """1 target, 2 ball, 3 slope, 4 miss, 5 pair, 6 invariant, 7 bound, then points; `image`: v, w and where they lead."""
+         outer: str = "1") -> Draft:
+    """1 target, 2 a point of it, 3 ball, 4 slope, 5 miss, 6 pair, 7 invariant, 8 bound, then points; `image`: v, w and where they lead."""
     d = Draft(claim(f"{way}v**2/4 + w", state=state, requires=asked))
     d.range("target[v]", "0", "0")
-    d.theorem("largest-ball", "ball", [1], radius=radius)
-    d.range("slope[v,v]", "-1/2", "1/2", [2])
+    d.point("target[v]", {}, "0")
+    d.theorem("largest-ball", "ball", [1, 2], radius=radius, outer=outer)
+    d.range("slope[v,v]", "-1/2", "1/2", [3])
     d.range("target-miss[v]", "-1/2", "1/2")
-    d.theorem("slope", "slope", [3, 4], gain="1/2", residual=residual)
-    d.theorem("invariant-ball", "invariant", [2, 5])
-    d.theorem("ultimate-bound", "bound[slope]", [6, 5], bound="1")
-    if target:
-        d.point("target[v]", {}, "0")
+    d.theorem("slope", "slope", [4, 5], gain="1/2", residual=residual)
+    d.theorem("invariant-ball", "invariant", [3, 6])
+    d.theorem("ultimate-bound", "bound[slope]", [7, 6], bound="1")
     d.point("image[v]", {"v": image[0], "w": image[1]}, image[2])
-    d.point("slope[v,v]", {"v": "1", "w": "0"}, f"{way}1/2", uses=[2])
+    d.point("slope[v,v]", {"v": "1", "w": "0"}, f"{way}1/2", uses=[3])
     for n, that in enumerate(asked, 1):
         if that.startswith("value(v)"):
-            d.range(f"require[{n}]", "-1", "1", [2])
-            d.point(f"require[{n}]", {"v": "1"}, "1", uses=[2])
+            d.range(f"require[{n}]", "-1", "1", [3])
+            d.point(f"require[{n}]", {"v": "1"}, "1", uses=[3])
         if that.startswith("value(w)"):
-            d.range(f"require[{n}]", "-1/2", "1/2", [2])
+            d.range(f"require[{n}]", "-1/2", "1/2", [3])
     return d
+
+
+def smaller(lines: Sequence[dict[str, Any]], number: int = 3) -> list[dict[str, Any]]:
+    """The lines with the ball on one of them by the other rule."""
+    found = copy.deepcopy(list(lines))
+    found[number - 1] |= {"rule": "smaller-ball", "uses": [1], "concludes": {"radius": found[number - 1]["concludes"]["radius"]}}
+    return found
+
+
+def lacking(lines: Sequence[dict[str, Any]], *numbers: int) -> list[dict[str, Any]]:
+    """The lines without some of them, numbered afresh."""
+    kept = [n for n in range(1, len(lines) + 1) if n not in numbers]
+    return [{**copy.deepcopy(lines[n - 1]), "uses": [kept.index(m) + 1 for m in lines[n - 1]["uses"]]} for n in kept]
 
 
 def balls() -> Entries:
@@ -563,7 +578,7 @@ def balls() -> Entries:
             accept("ball, a point leaves below", outside.entries("ball", list(zip(BALL, WHOLE, strict=True))))
         for name, image in (("the edge", (edge, "0", edge)), ("inside", (edge, str(-side * Q(tiny)), moved(edge, -side))), ("the other edge", (str(-side), "0", str(side * Q("1/4"))))):
             inside = ball(BALL, image, state, way)
-            del inside.proof[8]  # a point that does not leave serves nothing
+            inside.proof = lacking(inside.proof, 9)  # a point that does not leave serves nothing
             entries = inside.entries("smaller ball", list(zip(BALL, PART, strict=True)))
             if name == "the edge" and way == "":
                 verdicts("ball, no point leaves", inside, "smaller ball", list(zip(BALL, PART, strict=True)))
@@ -580,6 +595,12 @@ def balls() -> Entries:
             wide = ball(BALL, (edge, str(-Q(tiny)), end), state, way)
             wide.proof[8]["concludes"]["upper"] = edge
             reject("ball, a point that may leave below", wide.entries("smaller ball", list(zip(BALL, WHOLE, strict=True))), "results", "[2].verdict: proved")
+        # by the other rule nothing is said of larger balls, wherever a point leads
+        outside.proof = smaller(outside.proof)
+        reject(f"smaller ball{way}, a point leaves", outside.entries("smaller ball", list(zip(BALL, PART, strict=True))), "proof", "line 9 serves no later line")
+        outside.proof = lacking(outside.proof, 9)
+        accept(f"smaller ball{way}", outside.entries("smaller ball", list(zip(BALL, PART, strict=True))))
+        reject(f"smaller ball{way}, called the largest", outside.entries("ball", list(zip(BALL, PART, strict=True))), "results", "results.set.kind: 'ball' is claimed, 'smaller ball' was derived")
     return entries
 
 
@@ -601,41 +622,38 @@ def ball_at_equality() -> None:
     for path in ("radius", "set radius", "requirements 1 value"):
         reject(f"ball, {path} more", but(exact, f"results {path} lower", moved("1", 1)), "results", "lower: more is claimed")
         reject(f"ball, {path} known better", but(exact, f"results {path} upper", moved("1", -1)), "results", "upper: more is claimed")
-    reject("k R + ε above R", but(good, "proof 4 concludes residual", moved("1/2", 1)), "proof line 6", "gain times radius plus residual exceeds the radius")
-    reject("k R + ε above R, by k", but(good, "proof 4 concludes gain", moved("1/2", 1)), "proof line 6", "gain times radius plus residual exceeds the radius")
+    reject("k R + ε above R", but(good, "proof 5 concludes residual", moved("1/2", 1)), "proof line 7", "gain times radius plus residual exceeds the radius")
+    reject("k R + ε above R, by k", but(good, "proof 5 concludes gain", moved("1/2", 1)), "proof line 7", "gain times radius plus residual exceeds the radius")
     reject("two points leave, one is enough", but(good, "proof", [*good["proof"], good["proof"][8]]), "proof", "line 11 serves no later line")
-    reject("slope of a wider set", but(good, "proof 2 concludes upper", moved("1/2", -1)), "proof line 3", "wider than what is concluded")
+    reject("slope of a wider set", but(good, "proof 3 concludes upper", moved("1/2", -1)), "proof line 4", "wider than what is concluded")
     reject("a point outside the ball", but(good, "proof 9 witness at v", moved("1", 1)), "proof line 10", "at.v: outside the range")
     accept("a point at the other end of the ball", but(good, "proof 9 witness at v", "-1", "proof 9 concludes", {"lower": "-1/2", "upper": "-1/2"}))
     reject("a point outside the other end", but(good, "proof 9 witness at v", moved("-1", -1)), "proof line 10", "at.v: outside the range")
-    # the largest ball is met exactly where the target is rational: here D = 1
-    for radius, verdict in (("1", "proved"), (str(Q("1") - Q("1" + STEP)), "undecided"), ("999999/1000000", "undecided"), ("1/2", "undecided")):
-        smaller = but(good, "proof 1 concludes radius", radius, "claim text", good["claim"]["text"].replace('["-1/2", "1/2"]', '["-1/8", "1/8"]'),
-                      "proof 3 concludes", {"lower": "-1/8", "upper": "1/8"}, "proof 4 concludes residual", "1/8", "proof 6 concludes bound", "1/4",
-                      "proof 8 witness at w", "1/8", "proof 8 concludes", {"lower": "33/8", "upper": "33/8"}, "proof 9", GONE)
-        if verdict == "undecided":
-            smaller = but(smaller, "results set kind", "smaller ball")
-            reject(f"a ball of radius {radius}, with a point that leaves", smaller, "results", "[1].verdict: proved is claimed, undecided was derived")
-            smaller = but(smaller, "proof 8", GONE)
-        accept(f"a ball of radius {radius}", but(smaller, "results requirements 0 verdict", verdict))
-        if verdict == "undecided":
-            reject(f"a ball of radius {radius}, all proved", smaller, "results", "[1].verdict: proved is claimed, undecided was derived")
-    missed = ball(ASKED_OF_BALL, LEAVES, target=False)
-    del missed.proof[7]  # where a point leads counts only about the largest ball
-    missed.proof[7]["uses"] = [2]
-    reject("no point of the target", of_ball(missed, kind="smaller ball"), "results", "[1].verdict: proved is claimed, undecided was derived")
-    accept("no point of the target, undecided", of_ball(missed, "undecided", "smaller ball"))
-    reject("no point of the target, radius known", but(of_ball(missed, "undecided", "smaller ball"), "results radius", {"lower": "1", "upper": "1"}), "results", "results.radius.upper: nothing was derived")
+    # a target of which no point is shown
+    missed = but(good, "proof", lacking(smaller(good["proof"]), 2, 9))  # where a point leads counts only about the largest ball
+    missed = but(missed, "results set kind", "smaller ball")
+    reject("no point of the target", missed, "results", "[1].verdict: proved is claimed, undecided was derived")
+    missed = but(missed, "results requirements 0 verdict", "undecided")
+    accept("no point of the target, undecided", missed)
+    reject("no point of the target, radius known", but(missed, "results radius", {"lower": "1", "upper": "1"}), "results", "results.radius.upper: nothing was derived")
     # gain, residual and set belong together
-    other = copy.deepcopy(good)
-    other["proof"].insert(2, {**other["proof"][1], "concludes": {"radius": "1/2"}})
-    for line in other["proof"][3:]:
-        line["uses"] = [n + (n > 2) for n in line["uses"]]
-    other["proof"][3]["uses"] = [3]
-    reject("ball with the gain of a smaller one", other, "proof line 7", "the gain refers to another set")
-    reject("invariant without its ball", but(good, "proof 5 uses", [1, 5]), "proof line 6", "invariant rests on the ball, then a gain and residual")
-    reject("invariant without its pair", but(good, "proof 5 uses", [2, 4]), "proof line 6", "the gain refers to another set")
-    reject("invariant by another name", but(good, "proof 5 proves", "bound"), "proof line 6", "invariant rests on")
+    by_both = "the proof has not exactly one ball about the target"
+    for rule, concludes, place, reason in (
+        ("smaller-ball", {"radius": "1/2"}, "proof line 8", "the gain refers to another set"), ("smaller-ball", {"radius": "1"}, "results", by_both),
+        ("largest-ball", {"outer": "1", "radius": "1/2"}, "proof line 8", "the gain refers to another set"), ("largest-ball", {"outer": moved("1", 1), "radius": "1"}, "proof line 8", "the gain refers to another set"),
+        ("largest-ball", {"outer": "1", "radius": "1"}, "results", "ball is proved more than once by largest-ball"),
+    ):
+        other = copy.deepcopy(good)
+        other["proof"].insert(3, {**good["proof"][2], "rule": rule, "uses": [1] if rule == "smaller-ball" else [1, 2], "concludes": concludes})
+        for line in other["proof"][4:]:
+            line["uses"] = [n + (n > 3) for n in line["uses"]]
+        other = but(other, "proof 4 uses", [4], "proof 4 concludes upper", moved("1/2", 1), "proof 6 concludes gain", "1/2" if place == "results" else moved("1/2", 1))
+        if place == "results":
+            other = but(other, "proof 4 concludes upper", "1/2")
+        reject(f"ball with the gain of one by {rule} of {concludes}", other, place, reason)
+    reject("invariant without its ball", but(good, "proof 6 uses", [1, 6]), "proof line 7", "invariant rests on the ball, then a gain and residual")
+    reject("invariant without its pair", but(good, "proof 6 uses", [3, 5]), "proof line 7", "the gain refers to another set")
+    reject("invariant by another name", but(good, "proof 6 proves", "bound"), "proof line 7", "invariant rests on")
     reject("region with the gain of a ball", but(BASE, "proof 4 uses", [2]), "proof line 8", "the gain refers to another set")
     alone = but(BASE, "proof 4 uses", [2], "proof", BASE["proof"][:7])
     alone["proof"][4] = {**alone["proof"][4], "uses": [2]}
@@ -648,13 +666,13 @@ def ball_at_equality() -> None:
     # R = 0: the target sits on the edge
     d = Draft(claim("v**2/4 + u*v", "[0, 4]", "u = [0, 1]", requires=["gain <= 1", "gain < 1", "radius >= 0", "radius > 0", "settles"]))
     d.range("target[v]", "0", "0")
-    d.theorem("largest-ball", "ball", [1], radius="0")
-    d.range("slope[v,v]", "0", "1", [2])
-    d.range("target-miss[v]", "0", "0")
-    d.theorem("slope", "slope", [3, 4], gain="1", residual="0")
-    d.theorem("invariant-ball", "invariant", [2, 5])
     d.point("target[v]", {}, "0")
-    d.point("slope[v,v]", {"v": "0", "u": "1"}, "1", uses=[2])
+    d.theorem("largest-ball", "ball", [1, 2], radius="0", outer="0")
+    d.range("slope[v,v]", "0", "1", [3])
+    d.range("target-miss[v]", "0", "0")
+    d.theorem("slope", "slope", [4, 5], gain="1", residual="0")
+    d.theorem("invariant-ball", "invariant", [3, 6])
+    d.point("slope[v,v]", {"v": "0", "u": "1"}, "1", uses=[3])
     verdicts("a ball of no size", d, "smaller ball", [("gain <= 1", "undecided"), ("gain < 1", "refuted"), ("radius >= 0", "proved"), ("radius > 0", "refuted"), ("settles", "undecided")])
     none = d.entries("smaller ball", [("gain <= 1", "undecided"), ("gain < 1", "refuted"), ("radius >= 0", "proved"), ("radius > 0", "refuted"), ("settles", "undecided")])
     # a point of one set refutes nothing where any set would do
@@ -665,22 +683,37 @@ def ball_at_equality() -> None:
     reject("a ball of no size, allowed to shrink, proved", but(allowed, "results requirements 0 verdict", "proved"), "results", "proved is claimed, undecided was derived")
     leaves = {"rule": "point", "proves": "image[v]", "uses": [], "witness": {"bits": 0, "at": {"v": "4", "u": "1"}}, "concludes": {"lower": "8", "upper": "8"}}
     reject("a ball of no size, and a point leaves", but(none, "proof", [*none["proof"], leaves]), "proof", "line 9 serves no later line")
+    accept("a ball of no size by the other rule", but(none, "proof", smaller(none["proof"])))
     # without a set proved invariant, only refutations by points of the ball
     d = Draft(claim("2*v + w", requires=["gain <= 2", "gain < 2", "radius >= 0", "value(w) <= 0.5", "value(v) <= 1", "value(v) < 1"]))
     d.range("target[v]", "0", "0")
-    d.theorem("largest-ball", "ball", [1], radius="1")
-    d.range("slope[v,v]", "2", "2", [2])
+    d.point("target[v]", {}, "0")
+    d.theorem("largest-ball", "ball", [1, 2], radius="1", outer="1")
+    d.range("slope[v,v]", "2", "2", [3])
     d.range("target-miss[v]", "-1/2", "1/2")
-    d.theorem("slope", "slope", [3, 4], gain="2", residual="1/2")
-    d.point("slope[v,v]", {"v": "0", "w": "0"}, "2", uses=[2])
-    d.range("require[4]", "-1/2", "1/2", [2])
-    d.range("require[5]", "-1", "1", [2])
-    d.point("require[6]", {"v": "1"}, "1", uses=[2])
+    d.theorem("slope", "slope", [4, 5], gain="2", residual="1/2")
+    d.point("slope[v,v]", {"v": "0", "w": "0"}, "2", uses=[3])
+    d.range("require[4]", "-1/2", "1/2", [3])
+    d.range("require[5]", "-1", "1", [3])
+    d.point("require[6]", {"v": "1"}, "1", uses=[3])
     entries = verdicts("no invariant set", d, None, [("gain <= 2", "undecided"), ("gain < 2", "refuted"), ("radius >= 0", "undecided"), ("value(w) <= 0.5", "proved"), ("value(v) <= 1", "undecided"), ("value(v) < 1", "refuted")])
     accept("no invariant set, gain known", but(entries, "results gain", {"lower": "2", "upper": "2"}))
     for path in ("bound", "states v bound", "routes slope bound", "sharp_bound", "states v sharp_bound"):
         for ends in ({"lower": "0", "upper": None}, {"lower": None, "upper": "9"}):
             reject(f"no invariant set, {path} {ends}", but(entries, f"results {path}", ends), "results", "nothing was derived")
+    # of a smaller ball that is not mapped into itself nothing is said but what holds of its points
+    part = but(entries, "proof", smaller(entries["proof"]))
+    reject("no invariant set, a smaller ball", part, "results", "results.routes: the keys are ")
+    part = but(part, "results routes", {}, "results requirements 1 verdict", "undecided")
+    reject("no invariant set, a smaller ball, no routes", part, "proof", "line 4 serves no later line")
+    part = but(part, "proof", lacking(part["proof"], 2, 4, 5, 6, 7))
+    accept("no invariant set, a smaller ball, no lines", part)
+    accept("no invariant set, a smaller ball, a value of no state", but(part, "results requirements 3 value", {"lower": "-1/2", "upper": "1/2"}))
+    for end, value in (("lower", "-1"), ("upper", "1")):
+        reject(f"no invariant set, a smaller ball, {end} end of a value", but(part, "results requirements 4 value", {"lower": None, "upper": None} | {end: value}), "results", f"[5].value.{end}: nothing was derived")
+        accept(f"no invariant set, the largest ball, {end} end of a value", but(entries, "results requirements 4 value", {"lower": None, "upper": None} | {end: value}))
+    for n, verdict in ((1, "refuted"), (4, "proved"), (4, "refuted"), (5, "proved")):
+        reject(f"no invariant set, a smaller ball, [{n + 1}] {verdict}", but(part, f"results requirements {n} verdict", verdict), "results", f"[{n + 1}].verdict: {verdict} is claimed")
 
 
 ball_at_equality()
@@ -692,7 +725,7 @@ def edges() -> None:
         derived = [(that, {"radius >= 1.01": "refuted", "radius > 1": "refuted"}.get(that, "undecided")) for that in asked]
         d = Draft(claim("2*v + w", requires=asked))
         d.range("target[v]", "0", "0")
-        d.theorem("largest-ball", "ball", [1], radius="1")
+        d.theorem("smaller-ball", "ball", [1], radius="1")
         d.point("target[v]", {}, "0")
         if known:
             good = verdicts(f"no set, {name}", d, None, derived)
@@ -716,22 +749,22 @@ MOVING = ["residual <= 0.5", "residual < 0.5", "gain <= 0.5", "settles"]
 
 
 def moving(change: str = "1/4", w: str = "1/4", movement: str = "1/4", extra: bool = True) -> Draft:
-    """1 target, 2 ball, 3 slope over the sheared set, 4 miss, 5 target slope, 6 pair, 7 invariant, 8 bound, then points."""
+    """1 target, 2 a point of it, 3 ball, 4 slope over the sheared set, 5 miss, 6 target slope, 7 pair, 8 invariant, 9 bound, then points."""
     held = f'c = {{ range = [-1, 1], held = true, change = "{change}" }}'
     d = Draft(claim("c + (v - c)**2/4 + w", "[-3, 2]", f'{held}\nw = ["-{w}", "{w}"]', "c", MOVING))
     residual = str(Q(w) + Q(movement))
     d.range("target[v]", "-1", "1")
-    d.theorem("largest-ball", "ball", [1], radius="1")
-    d.range("slope[v,v]", "-1/2", "1/2", [2], ["c"])
+    d.point("target[v]", {"c": "1"}, "1")
+    d.theorem("largest-ball", "ball", [1, 2], radius="1", outer="1")
+    d.range("slope[v,v]", "-1/2", "1/2", [3], ["c"])
     d.range("target-miss[v]", f"-{w}", w, trees=["c"])
     d.range("target-slope[v,c]", "1", "1")
-    d.theorem("slope", "slope", [3, 4, 5], gain="1/2", residual=residual)
-    d.theorem("invariant-ball", "invariant", [2, 6])
-    d.theorem("ultimate-bound", "bound[slope]", [7, 6], bound=str(2 * Q(residual)))
+    d.theorem("slope", "slope", [4, 5, 6], gain="1/2", residual=residual)
+    d.theorem("invariant-ball", "invariant", [3, 7])
+    d.theorem("ultimate-bound", "bound[slope]", [8, 7], bound=str(2 * Q(residual)))
     if extra:
-        d.point("target[v]", {"c": "1"}, "1")
         d.point("image[v]", {"v": "-3", "c": "1", "w": "0"}, "5")
-        d.point("slope[v,v]", {"error(v)": "1", "c": "0", "w": "0"}, "1/2", uses=[2])
+        d.point("slope[v,v]", {"error(v)": "1", "c": "0", "w": "0"}, "1/2", uses=[3])
         d.point("target-miss[v]", {"c": "0", "w": w}, w)
     return d
 
@@ -746,21 +779,23 @@ def targets_that_move() -> None:
         place = "results.set.centre" if path.startswith("set") else f"results.{path}"
         reject(f"moving target, {path} lower", but(exact, f"results {path} lower", moved(lower, 1)), "results", f"{place}.lower: more")
         reject(f"moving target, {path} upper", but(exact, f"results {path} upper", moved(upper, -1)), "results", f"{place}.upper: more")
-    reject("moving target, residual less", but(good, "proof 5 concludes residual", moved("1/2", -1)), "proof line 6", "gain or residual: less")
-    reject("moving target, movement left out", but(good, "proof 5 uses", [3, 4]), "proof line 6", "rests on range slope[v,v], range target-miss[v], range target-slope[v,c]")
+    reject("moving target, residual less", but(good, "proof 6 concludes residual", moved("1/2", -1)), "proof line 7", "gain or residual: less")
+    reject("moving target, movement left out", but(good, "proof 6 uses", [4, 5]), "proof line 7", "rests on range slope[v,v], range target-miss[v], range target-slope[v,c]")
     for value in (moved("1", 1), moved("-1", -1)):
         reject(f"moving target, error {value}", but(good, "proof 10 witness at error(v)", value), "proof line 11", "at.error(v): outside the range")
         reject(f"moving target, c {value}", but(good, "proof 10 witness at c", value), "proof line 11", "at.c: outside the range")
     accept("moving target, error -1", but(good, "proof 10 witness at error(v)", "-1", "proof 10 concludes", {"lower": "-1/2", "upper": "-1/2"}))
     # the least distance to the edge counts: at c = -1 it is 2
-    reject("moving target, far from the edge", but(good, "results set kind", "smaller ball", "proof 8 witness at c", "-1", "proof 8 concludes", {"lower": "-1", "upper": "-1"}), "results", "[1].verdict: proved is claimed, undecided was derived")
-    both = but(good, "proof", [*good["proof"], {**good["proof"][8], "witness": {"at": {"c": "-1"}, "bits": 0}, "concludes": {"lower": "-1", "upper": "-1"}}])
+    far = but(good, "proof 1 witness at c", "-1", "proof 1 concludes", {"lower": "-1", "upper": "-1"})
+    reject("moving target, far from the edge", far, "proof line 3", "outer: larger balls are not shown to leave the region")
+    reject("moving target, far from the edge, as said", but(far, "proof 2 concludes outer", "2"), "proof line 4", "wider than what is concluded")
+    both = but(good, "proof", [*good["proof"], {**good["proof"][1], "witness": {"at": {"c": "-1"}, "bits": 0}, "concludes": {"lower": "-1", "upper": "-1"}}])
     reject("moving target, a second point farther from the edge", both, "proof", "line 13 serves no later line")
-    both = but(good, "proof", [*good["proof"], good["proof"][8]])
+    both = but(good, "proof", [*good["proof"], good["proof"][1]])
     reject("moving target, a second point as far from the edge", both, "proof", "line 13 serves no later line")
     mirrored = moving().entries("ball", derived)
     mirrored = but(mirrored, "claim text", mirrored["claim"]["text"].replace("[-3, 2]", "[-2, 3]").replace("(v - c)**2/4", "(c - v)*(v - c)/4"),
-                   "proof 2 witness trees", ["c"], "proof 8 witness at c", "-1", "proof 8 concludes", {"lower": "-1", "upper": "-1"},
+                   "proof 3 witness trees", ["c"], "proof 1 witness at c", "-1", "proof 1 concludes", {"lower": "-1", "upper": "-1"},
                    "proof 9 witness at", {"v": "3", "c": "-1", "w": "0"}, "proof 9 concludes", {"lower": "-5", "upper": "-5"},
                    "proof 10 concludes", {"lower": "-1/2", "upper": "-1/2"})
     accept("moving target, mirrored", but(mirrored, "results radius", {"lower": "1", "upper": "1"}))
@@ -768,13 +803,13 @@ def targets_that_move() -> None:
     # never more than the width of the range: c cannot move by more than 2
     for change, movement in (("2", "2"), ("10", "2"), ("2" + "0" * 22 + "1" + "/1" + "0" * 22, "2"), ("0", "0")):
         d = moving(change, "1/4", movement, extra=False)
-        del d.proof[6:]
+        del d.proof[7:]
         d.point("target-miss[v]", {"c": "0", "w": "1/4"}, "1/4")
         entries = d.entries(None, [(r, "refuted" if movement == "2" and r.startswith("res") else "undecided") for r in MOVING])
         residual = str(Q(movement) + Q("1/4"))
         entries = but(entries, "results residual", {"lower": residual, "upper": residual})
         accept(f"change {change[:4]}", entries)
-        reject(f"change {change[:4]}, less", but(entries, "proof 5 concludes residual", moved(residual, -1)), "proof line 6", "gain or residual: less")
+        reject(f"change {change[:4]}, less", but(entries, "proof 6 concludes residual", moved(residual, -1)), "proof line 7", "gain or residual: less")
         reject(f"change {change[:4]}, more", but(entries, "results residual lower", moved(residual, 1)), "results", "residual.lower: more")
         missing = but(entries, "proof", entries["proof"][:-1])
         reject(f"change {change[:4]}, miss not attained", missing, "results", "residual.lower: nothing was derived")
@@ -786,15 +821,15 @@ targets_that_move()
 def ends_of_sets() -> None:
     """The range of a slope must cover the whole set: one step narrower at either end is rejected."""
     good = of_ball(ball(ASKED_OF_BALL, LEAVES))
-    reject("ball, slope from within its lower end", but(good, "proof 2 concludes lower", moved("-1/2", 1)), "proof line 3", "wider than what is concluded")
+    reject("ball, slope from within its lower end", but(good, "proof 3 concludes lower", moved("-1/2", 1)), "proof line 4", "wider than what is concluded")
     derived = [("residual <= 0.5", "proved"), ("residual < 0.5", "refuted"), ("gain <= 0.5", "proved"), ("settles", "undecided")]
     good = moving().entries("ball", derived)
     for end, value in (("lower", moved("-1/2", 1)), ("upper", moved("1/2", -1))):
-        reject(f"sheared ball, slope from within its {end} end", but(good, f"proof 2 concludes {end}", value), "proof line 3", "wider than what is concluded")
+        reject(f"sheared ball, slope from within its {end} end", but(good, f"proof 3 concludes {end}", value), "proof line 4", "wider than what is concluded")
     reject("inward", but(Draft(claim()).entries(None, []), "proof", []), "proof", "at least one line")
     two = Draft(claim(requires=["push(v) > 0", "gain < 1"]))
     two.range("target[v]", "0", "0")
-    two.theorem("largest-ball", "ball", [1], radius="1")
+    two.theorem("smaller-ball", "ball", [1], radius="1")
     entries = two.entries(None, [("push(v) > 0", "undecided"), ("gain < 1", "undecided")])
     null = {"lower": None, "upper": None}
     reject("push of no set, null", but(entries, "results requirements 0 value", null), "results", "[1].value: nothing was derived")
@@ -826,12 +861,12 @@ def routes() -> None:
         else:
             reject(f"weight {weight}", changed, "claim", "only the weight 1")
     two = claim(state="[-1, 1]\nu = [0, 1]").replace("[target]", 'u = "u"\n[target]').replace('v = "0"', 'v = "0"\nu = "0"')
-    reject("two states", but(BASE, "claim text", two), "claim", "only closed-form claims of one state")
+    reject("two states", but(BASE, "claim text", two), "claim", "claims of one state and one stance")
     stance = '[stance.only]\nthen = "only"'
-    reject("a named stance", but(BASE, "claim text", claim(rest=stance)), "claim", "only closed-form claims of one state")
+    reject("a named stance", but(BASE, "claim text", claim(rest=stance)), "claim", "claims of one state and one stance")
     reject("stances", but(BASE, "claim text", claim(rest='[stance.a]\nthen = "b"\n[stance.b]\nthen = "a"')), "claim", "one stance")
     running = '[dynamics]\nduration = 1\nstart = { x = 0 }\nrate = { x = 0 }'
-    reject("dynamics", but(BASE, "claim text", claim(rest=running)), "claim", "only closed-form claims of one state")
+    reject("dynamics of which nothing is shown", but(BASE, "claim text", claim(rest=running)), "results", "results.set.kind: 'region' is claimed, None was derived")
 
 
 routes()
@@ -963,7 +998,7 @@ def listed_values() -> None:
         d = Draft(claim("c**2 + (v - c**2)/2", "[-1, 1]", held.replace("CHANGE", change), "c**2", ["settles"]))
         residual = str(Q(movement))
         d.range("target[v]", "0", "1/4", trees=["d"] * 3)
-        d.theorem("largest-ball", "ball", [1], radius="3/4")
+        d.theorem("smaller-ball", "ball", [1], radius="3/4")
         d.range("image[v]", "-1/2", "5/8", trees=["d"] * 3)
         d.theorem("invariant-region", "invariant", [1, 3])
         d.range("slope[v,v]", "1/2", "1/2", [4], ["d"] * 3)
@@ -1020,7 +1055,7 @@ def libraries() -> None:
         target = "0" if low == 0 else "1/2"
         d = Draft(claim(f"r/4 + {target}*0 + w", state, "w = [0, 0]", target, rest=library), TENT)
         d.range("target[v]", target, target)
-        d.theorem("largest-ball", "ball", [1], radius="0")
+        d.theorem("smaller-ball", "ball", [1], radius="0")
         d.range("slope[v,v]", *(("-1/2", "1/2") if cells == 2 else ends), [2], ["d"])
         d.proof[2]["witness"]["trees"] = ["d"]
         d.proof.pop()
@@ -1034,7 +1069,7 @@ def libraries() -> None:
     # the slope over a region that is mapped into itself: cells are cut through the mark of the state as well
     d = Draft(claim("r/4 + w", "[0, 1]", 'w = [0, "1/2"]', rest=library, requires=["gain <= 0.5", "gain < 0.5"]), TENT)
     d.range("target[v]", "0", "0")
-    d.theorem("largest-ball", "ball", [1], radius="0")
+    d.theorem("smaller-ball", "ball", [1], radius="0")
     d.range("image[v]", "0", "3/4", trees=["d", "d"])
     d.theorem("invariant-region", "invariant", [1, 3])
     d.range("slope[v,v]", "-1/2", "1/2", [4], ["d", "d"])
@@ -1084,7 +1119,7 @@ def curve(asked: Sequence[str], top: str = "", state: str = "[-3/4, 3/4]", radii
     ends = '["' + state.strip("[]").replace(", ", '", "') + '"]'
     d = Draft(claim("v/2 + w", ends, 'w = ["-1/8", "1/8"]', requires=asked, top=top))
     d.range("target[v]", "0", "0")
-    d.theorem("largest-ball", "ball", [1], radius="3/4")
+    d.theorem("smaller-ball", "ball", [1], radius="3/4")
     d.range("image[v]", "-1/2", "1/2")
     d.theorem("invariant-region", "invariant", [1, 3])
     d.line("shells", "shells", [4], {"radii": list(radii), "slope": slope})
@@ -1237,7 +1272,7 @@ def lines_at_nought() -> None:
     """v⁺ = 0: the line may lie on the target, with a residual of 0 and nothing below."""
     d = Draft(claim("0*v", "[-1, 1]", "u = [0, 1]"))
     d.range("target[v]", "0", "0")
-    d.theorem("largest-ball", "ball", [1], radius="1")
+    d.theorem("smaller-ball", "ball", [1], radius="1")
     d.range("image[v]", "0", "0")
     d.theorem("invariant-region", "invariant", [1, 3])
     d.line("shells", "shells", [4], {"radii": ["1"], "slope": "1/2"})
@@ -1272,7 +1307,7 @@ def shells_of_sets() -> None:
     for state, target, low, high in (('["-1/2", "3/4"]', "1/4", "-1/2", "3/8"), ('["-3/4", "1/2"]', "-1/4", "-3/8", "1/2")):
         d = Draft(claim(f"{target} + (v - ({target}))/2 + w", state, 'w = ["-1/8", "1/8"]', target))
         d.range("target[v]", target, target)
-        d.theorem("largest-ball", "ball", [1], radius="1/2")
+        d.theorem("smaller-ball", "ball", [1], radius="1/2")
         d.range("image[v]", str(Q(target) + Q(low)), str(Q(target) + Q(high)))
         d.theorem("invariant-region", "invariant", [1, 3])
         d.line("shells", "shells", [4], {"radii": ["3/4"], "slope": "0"})
@@ -1298,36 +1333,36 @@ def shells_of_sets() -> None:
             reject(f"shells of {state}, the line beyond {at}", but(kept, "proof 8 witness at v", moved(at, 1 if away > 0 else -1)), "proof line 9", "at.v: outside the range")
     d = Draft(claim("v**2/4 + w", "[-1, 4]", requires=ASKED_OF_BALL))
     d.range("target[v]", "0", "0")
-    d.theorem("largest-ball", "ball", [1], radius="1")
-    d.line("shells", "shells", [2], {"radii": ["1/4", "1/2", "1"], "slope": "1/4"})
-    for j, high in enumerate(("33/64", "9/16", "3/4"), 1):
-        d.range(f"shell[{j}]", "-1/2", high, [3], ["d", "d"])
-    d.range("line[v]", "-1/4", "3/4", [3], ["d"])
-    d.theorem("curve", "curve", [3, 4, 5, 6, 7], gain="1/4", residual="3/4", sharp="3/4")
-    d.theorem("invariant-ball", "invariant", [2, 8])
-    d.theorem("ultimate-bound", "bound[curve]", [9, 8], bound="1")
     d.point("target[v]", {}, "0")
+    d.theorem("largest-ball", "ball", [1, 2], radius="1", outer="1")
+    d.line("shells", "shells", [3], {"radii": ["1/4", "1/2", "1"], "slope": "1/4"})
+    for j, high in enumerate(("33/64", "9/16", "3/4"), 1):
+        d.range(f"shell[{j}]", "-1/2", high, [4], ["d", "d"])
+    d.range("line[v]", "-1/4", "3/4", [4], ["d"])
+    d.theorem("curve", "curve", [4, 5, 6, 7, 8], gain="1/4", residual="3/4", sharp="3/4")
+    d.theorem("invariant-ball", "invariant", [3, 9])
+    d.theorem("ultimate-bound", "bound[curve]", [10, 9], bound="1")
     d.point("image[v]", {"v": "4", "w": "1/2"}, "9/2")
     good = of_ball(d, "undecided")
     accept("shells of a ball", good)
     accept("shells of a ball, sharp bound", but(good, "results sharp_bound", {"lower": None, "upper": "3/4"}))
     reject("shells of a ball, sharp bound more", but(good, "results sharp_bound", {"lower": None, "upper": moved("3/4", -1)}), "results", "results.sharp_bound.upper: more")
     for last in (moved("1", 1), moved("1", -1)):
-        reject(f"shells of a ball to {last}", but(good, "proof 2 witness radii", ["1/4", "1/2", last]), "proof line 3", "the shells do not cover the set")
+        reject(f"shells of a ball to {last}", but(good, "proof 3 witness radii", ["1/4", "1/2", last]), "proof line 4", "the shells do not cover the set")
     for end, value in (("lower", moved("-1/4", 1)), ("upper", moved("3/4", -1))):
-        reject(f"shells of a ball, line {end}", but(good, f"proof 6 concludes {end}", value), "proof line 7", "wider than")
+        reject(f"shells of a ball, line {end}", but(good, f"proof 7 concludes {end}", value), "proof line 8", "wider than")
     for at, inside in (("1", True), ("-1", True), (moved("1", 1), False), (moved("-1", -1), False)):
-        point = {"rule": "point", "proves": "line[v]", "uses": [3], "witness": {"bits": 0, "at": {"v": at, "w": "1/2"}}, "concludes": {"lower": "0", "upper": "1"}}
+        point = {"rule": "point", "proves": "line[v]", "uses": [4], "witness": {"bits": 0, "at": {"v": at, "w": "1/2"}}, "concludes": {"lower": "0", "upper": "1"}}
         reject(f"shells of a ball, the line at {at}", but(good, "proof", [*good["proof"], point]), "proof" if inside else "proof line 13", "line 13 serves no later line" if inside else "at.v: outside the range")
     for key, value in (("gain", "1/4"), ("residual", "3/4"), ("sharp", "3/4")):
-        reject(f"shells of a ball, {key}", but(good, f"proof 7 concludes {key}", moved(value, -1)), "proof line 8", below if key != "sharp" else "sharp: less")
+        reject(f"shells of a ball, {key}", but(good, f"proof 8 concludes {key}", moved(value, -1)), "proof line 9", below if key != "sharp" else "sharp: less")
     for key, value in (("gain", "1/4"), ("residual", "3/4")):
-        reject(f"shells of a ball, {key} too large", but(good, f"proof 7 concludes {key}", moved(value, 1)), "proof line 9", "gain times radius plus residual exceeds the radius")
-    for uses in ([8, 2], [2], [2, 8, 8], [3, 8]):
-        reject(f"shells of a ball, invariant uses {uses}", but(good, "proof 8 uses", uses), "proof line 9", "invariant rests on the ball, then a gain and residual")
-    for uses in ([2, 2], [2, 3], [2, 7]):
-        reject(f"shells of a ball, invariant uses {uses}", but(good, "proof 8 uses", uses), "proof line 9", "the gain refers to another set")
-    alone = but(good, "proof", [*good["proof"][:8], good["proof"][10]], "results set", None, "results requirements 1 verdict", "undecided")
+        reject(f"shells of a ball, {key} too large", but(good, f"proof 8 concludes {key}", moved(value, 1)), "proof line 10", "gain times radius plus residual exceeds the radius")
+    for uses in ([9, 3], [3], [3, 9, 9], [4, 9]):
+        reject(f"shells of a ball, invariant uses {uses}", but(good, "proof 9 uses", uses), "proof line 10", "invariant rests on the ball, then a gain and residual")
+    for uses in ([3, 3], [3, 4], [3, 8]):
+        reject(f"shells of a ball, invariant uses {uses}", but(good, "proof 9 uses", uses), "proof line 10", "the gain refers to another set")
+    alone = but(good, "proof", good["proof"][:9], "results set", None, "results requirements 1 verdict", "undecided")
     accept("shells of a ball that is not kept", alone)
     for path in ("sharp_bound", "states v sharp_bound", "states v bound"):
         reject(f"shells of a ball that is not kept, {path}", but(alone, f"results {path}", {"lower": None, "upper": "1"}), "results", "nothing was derived")
@@ -1335,30 +1370,30 @@ def shells_of_sets() -> None:
         d = moving()
         asked = [(f"residual <= {pair[1]}", "proved"), ("settles", "proved")]
         d.text = claim("c + (v - c)**2/4 + w", "[-3, 2]", 'c = { range = [-1, 1], held = true, change = "1/4" }\nw = ["-1/4", "1/4"]', "c", [a for a, _ in asked])
-        points = d.proof[8:10]
-        d.proof = d.proof[:2]
-        d.line("shells", "shells", [2], {"radii": ["1"], "slope": slope})
-        d.range("shell[1]", "-1/4", "1/2", [3], ["m", "m"])
-        d.range("line[v]", line[0], line[1], [3], ["m"])
+        leaves = d.proof[9]
+        d.proof = d.proof[:3]
+        d.line("shells", "shells", [3], {"radii": ["1"], "slope": slope})
+        d.range("shell[1]", "-1/4", "1/2", [4], ["m", "m"])
+        d.range("line[v]", line[0], line[1], [4], ["m"])
         d.range("target-slope[v,c]", "1", "1")
-        d.theorem("curve", "curve", [3, 4, 5, 6], gain=pair[0], residual=pair[1], sharp="3/4")
-        d.theorem("invariant-ball", "invariant", [2, 7])
-        d.theorem("ultimate-bound", "bound[curve]", [8, 7], bound=bound)
-        d.proof += points
+        d.theorem("curve", "curve", [4, 5, 6, 7], gain=pair[0], residual=pair[1], sharp="3/4")
+        d.theorem("invariant-ball", "invariant", [3, 8])
+        d.theorem("ultimate-bound", "bound[curve]", [9, 8], bound=bound)
+        d.proof.append(leaves)
         name = "shells about a moving target" + (f", slope {slope}" if slope != "0" else "")
         good = verdicts(name, d, "ball", asked)
         for key, value in (("gain", pair[0]), ("residual", pair[1]), ("sharp", "3/4")):
-            reject(f"{name}, {key}", but(good, f"proof 6 concludes {key}", moved(value, -1)), "proof line 7", "sharp: less" if key == "sharp" else below)
+            reject(f"{name}, {key}", but(good, f"proof 7 concludes {key}", moved(value, -1)), "proof line 8", "sharp: less" if key == "sharp" else below)
         for end, value in (("lower", moved(line[0], 1)), ("upper", moved(line[1], -1))):
-            reject(f"{name}, line {end}", but(good, f"proof 4 concludes {end}", value), "proof line 5", "wider than")
+            reject(f"{name}, line {end}", but(good, f"proof 5 concludes {end}", value), "proof line 6", "wider than")
         for at, inside in (("1", True), ("-1", True), (moved("1", 1), False), (moved("-1", -1), False)):
-            point = {"rule": "point", "proves": "line[v]", "uses": [3], "witness": {"bits": 0, "at": {"error(v)": at, "c": "1/3", "w": "1/4"}}, "concludes": {"lower": "-1", "upper": "1"}}
+            point = {"rule": "point", "proves": "line[v]", "uses": [4], "witness": {"bits": 0, "at": {"error(v)": at, "c": "1/3", "w": "1/4"}}, "concludes": {"lower": "-1", "upper": "1"}}
             n = len(good["proof"]) + 1
             reject(f"{name}, the line at {at}", but(good, "proof", [*good["proof"], point]), "proof" if inside else f"proof line {n}", f"line {n} serves no later line" if inside else "at.error(v): outside the range")
-        reject(f"{name}, movement left out", but(good, "proof 6 uses", [3, 4, 5]), "proof line 7", "curve rests on")
-        reject(f"{name}, movement for the line", but(good, "proof 6 uses", [3, 4, 6, 5]), "proof line 7", "curve rests on")
+        reject(f"{name}, movement left out", but(good, "proof 7 uses", [4, 5, 6]), "proof line 8", "curve rests on")
+        reject(f"{name}, movement for the line", but(good, "proof 7 uses", [4, 5, 7, 6]), "proof line 8", "curve rests on")
         for end, value in (("upper", moved("1", 1)), ("lower", moved("-1", -1))):
-            reject(f"{name}, movement more, {end}", but(good, f"proof 5 concludes {end}", value), "proof line 7", below)
+            reject(f"{name}, movement more, {end}", but(good, f"proof 6 concludes {end}", value), "proof line 8", below)
 
 
 shells_of_sets()
@@ -1368,7 +1403,7 @@ def shells_apart() -> None:
     """A shell leaves out what is nearer: 1/8 - v²/4 is at most 1/16 from 1/2 outwards."""
     d = Draft(claim("1/8 - v*v/4", "[-1, 1]", "u = [0, 1]"))
     d.range("target[v]", "0", "0")
-    d.theorem("largest-ball", "ball", [1], radius="1")
+    d.theorem("smaller-ball", "ball", [1], radius="1")
     d.range("image[v]", "-1/8", "1/8")
     d.theorem("invariant-region", "invariant", [1, 3])
     d.line("shells", "shells", [4], {"radii": ["1/2", "1"], "slope": "0"})
@@ -1441,7 +1476,7 @@ def splits() -> None:
     top = 'correction = ["f"]\nroute = "split"'
     d = Draft(claim("v/2 - f/4 + w", "[-1, 1]", 'w = ["-1/8", "1/8"]', requires=asked, top=top, rest='[define]\nf = "v"'))
     d.range("target[v]", "0", "0")
-    d.theorem("largest-ball", "ball", [1], radius="1")
+    d.theorem("smaller-ball", "ball", [1], radius="1")
     d.range("image[v]", "-3/8", "3/8", trees=["m"])
     d.theorem("invariant-region", "invariant", [1, 3])
     d.range("split-slope[v,v]", "3/4", "3/4", [4])
@@ -1576,7 +1611,7 @@ def courses() -> None:
     # a map that expands about a fixed point: ends are led away to both sides
     d = Draft(claim("1.5*v - v*v*v/2", "[-1, 1]", "u = [0, 1]"))
     d.range("target[v]", "0", "0")
-    d.theorem("largest-ball", "ball", [1], radius="1")
+    d.theorem("smaller-ball", "ball", [1], radius="1")
     d.range("image[v]", "-1", "1", trees=["m"])
     d.theorem("invariant-region", "invariant", [1, 3])
     for start in (["-1/2", "1/2"], ["-1", "1/2"], ["-1/2", "1"], ["-1", "1"]):
@@ -1641,33 +1676,614 @@ def courses() -> None:
     reject("push of no room", none, "results", "results.states.v.push: nothing was derived")
     # a course about a ball starts within it, and held values are the same throughout
     d = ball(ASKED_OF_BALL, LEAVES)
-    d.proof.append({**course("orbit", ["0", "0"], ["0"], distance="0"), "uses": [6]})
+    d.proof.append({**course("orbit", ["0", "0"], ["0"], distance="0"), "uses": [7]})
     good = of_ball(d)
     accept("orbit in a ball", good)
     # about a ball, what its radius leaves: v = v²/4 + 7/16 at 1/2, its radius 1 at most
-    still = {**course("orbit", ["1/2", "1/2"], ["7/16"], distance="1/2", highest="1/2", lowest="1/2"), "uses": [6]}
+    still = {**course("orbit", ["1/2", "1/2"], ["7/16"], distance="1/2", highest="1/2", lowest="1/2"), "uses": [7]}
     pushed = but(good, "proof 10", still, "claim text", good["claim"]["text"].replace("gain <= 0.5", "push(v) > 0.5"), "results requirements 0 that", "push(v) > 0.5", "results requirements 0 verdict", "refuted")
     accept("orbit in a ball, push", but(pushed, "results requirements 0 value", {"lower": None, "upper": "1/2"}))
     reject("orbit in a ball, push more", but(pushed, "results requirements 0 value", {"lower": None, "upper": moved("1/2", -1)}), "results", "[1].value.upper: more")
     for x, ok in (("1", True), ("-1", True), (moved("1", 1), False), (moved("-1", -1), False)):
-        changed = but(good, "proof 10", {**course("path", [str(x)], ["0"], from_="2", distance="0", steps="1"), "uses": [6]})
+        changed = but(good, "proof 10", {**course("path", [str(x)], ["0"], from_="2", distance="0", steps="1"), "uses": [7]})
         if ok:
             reject(f"path in a ball from {x}", changed, "proof", "line 11 serves no later line")
         else:
             reject(f"path in a ball from {x}", changed, "proof line 11", "start: not shown to be in the set")
     # a ball smaller than the largest, where the claim allows it
-    smaller = ball(ASKED_OF_BALL, LEAVES)
-    smaller.text = smaller.text.replace("format = 1", "format = 1\nshrink = true").replace('["-1/2", "1/2"]', '["-1/8", "1/8"]')
-    smaller.proof[1]["concludes"] = {"radius": "1/2"}
-    smaller.proof[3]["concludes"], smaller.proof[4]["concludes"] = {"lower": "-1/8", "upper": "1/8"}, {"gain": "1/2", "residual": "1/8"}
-    smaller.proof[6]["concludes"] = {"bound": "1/4"}
-    del smaller.proof[8:]
-    accept("a smaller ball where the claim allows it", of_ball(smaller, kind="smaller ball"))
-    smaller.text = smaller.text.replace("shrink = true", "shrink = false")
-    reject("a smaller ball where it does not", of_ball(smaller, kind="smaller ball"), "results", "[1].verdict: proved is claimed, undecided was derived")
+    d = ball(ASKED_OF_BALL, LEAVES, radius="1/2")
+    d.proof[4]["concludes"], d.proof[5]["concludes"], d.proof[7]["concludes"] = {"lower": "-1/8", "upper": "1/8"}, {"gain": "1/2", "residual": "1/8"}, {"bound": "1/4"}
+    for name, proof in (("", lacking(smaller(d.proof), 9, 10)), (" by the rule of the largest", lacking(d.proof, 9, 10))):
+        d.proof = proof
+        d.text = claim("v**2/4 + w", "[-1, 4]", 'w = ["-1/8", "1/8"]', requires=ASKED_OF_BALL, top="shrink = true")
+        accept(f"a smaller ball where the claim allows it{name}", of_ball(d, kind="smaller ball"))
+        d.text = d.text.replace("shrink = true", "shrink = false")
+        reject(f"a smaller ball where it does not{name}", of_ball(d, kind="smaller ball"), "results", "[1].verdict: proved is claimed, undecided was derived")
 
 
 courses()
+
+
+# the largest ball, known to lie between R and R⁺: v⁺ = v²/4 + w, |w| <= 1/8, about 0 on [-1, 4] or, turned round, on [-4, 1];
+# R = 1/2 is chosen, R⁺ = 1 is what the point 0 shows
+
+APART = [
+    ("gain <= 0.5", "proved"), ("gain < 0.25", "refuted"), ("gain < 0.5", "undecided"), ("residual <= 0.125", "proved"), ("settles", "proved"), ("bound <= 0.25", "proved"),
+    ("radius >= 0.5", "proved"), ("radius > 0.5", "undecided"), ("radius >= 1", "undecided"), ("radius > 1", "refuted"), ("radius >= 1.01", "refuted"),
+    ("push(v) > 0.24", "proved"), ("push(v) >= 0.25", "undecided"), ("push(v) > 0.5", "undecided"),
+    ("steps(v, 0.5, 0.375) <= 1", "proved"), ("steps(v, 0.5, 0.375) < 1", "undecided"), ("steps(v, 0.500000000000000000001, 0.375) <= 9", "undecided"),
+    ("value(v) <= 1", "proved"), ("value(v) < 1", "undecided"), ("value(v) <= 0.5", "undecided"), ("value(v) < 0.5", "refuted"), ("value(v) >= -1", "proved"), ("value(v) > -0.5", "refuted"), ("value(w) <= 0.125", "proved"),
+]
+
+
+def apart(asked: Sequence[str] = ("gain <= 0.5",), radius: str = "1/2", outer: str = "1", w: str = "1/8", way: str = "") -> Draft:
+    """1 target, 2 a point of it, 3 ball, 4 slope, 5 miss, 6 pair, 7 invariant, 8 bound, 9 a point that leaves, 10 a point of the slope at R."""
+    state, edge = ("[-1, 4]", Q(4)) if way == "" else ("[-4, 1]", Q(-4))
+    d = Draft(claim(f"{way}v**2/4 + w", state, f'w = ["-{w}", "{w}"]', requires=asked))
+    d.range("target[v]", "0", "0")
+    d.point("target[v]", {}, "0")
+    d.theorem("largest-ball", "ball", [1, 2], radius=radius, outer=outer)
+    d.range("slope[v,v]", "-1/2", "1/2", [3])
+    d.range("target-miss[v]", f"-{w}", w)
+    d.theorem("slope", "slope", [4, 5], gain="1/2", residual=w)
+    d.theorem("invariant-ball", "invariant", [3, 6])
+    d.theorem("ultimate-bound", "bound[slope]", [7, 6], bound=str(2 * Q(w)))
+    d.point("image[v]", {"v": str(edge), "w": way + w}, str(edge + Q(way + w)))
+    d.point("slope[v,v]", {"v": radius, "w": "0"}, str(Q(way + "1/2") * Q(radius)), uses=[3])
+    for n, that in enumerate(asked, 1):
+        if that.startswith("value(v)"):
+            d.range(f"require[{n}]", "-1", "1", [3])
+            d.point(f"require[{n}]", {"v": radius}, radius, uses=[3])
+            d.point(f"require[{n}]", {"v": f"-{radius}"}, f"-{radius}", uses=[3])
+        if that.startswith("value(w)"):
+            d.range(f"require[{n}]", f"-{w}", w, [3])
+    return d
+
+
+def narrowed(name: str, exact: Entries, paths: Sequence[str]) -> None:
+    """Ends of results that may not be claimed any closer."""
+    for path in paths:
+        at: Any = exact["results"]
+        for part in path.split():
+            at = at[int(part) if part.isdigit() else part]
+        end = path.split()[-1]
+        inward = (end == "lower") != ("attained" in path)
+        reject(f"{name}, {path} more", but(exact, f"results {path}", moved(at, 1 if inward else -1)), "results", f"{end}: more is claimed")
+
+
+UNSHOWN = "outer: larger balls are not shown to leave the region"
+
+
+def radii_apart() -> None:
+    """R may be smaller than the largest ball's by anything: suprema reach up to R⁺, points and what is proved of starts only to R."""
+    good = verdicts("R below R⁺", apart([that for that, _ in APART]), "ball", APART)
+    ends = {"lower": "1/2", "upper": "1"}
+    exact = but(good, "results radius", ends, "results set radius", ends, "results states v radius", ends, "results states v push", {"lower": "1/4", "upper": None}, "results gain", {"lower": "1/4", "upper": "1/2"}, "results set centre v", {"lower": "0", "upper": "0"})
+    accept("R below R⁺, exact", exact)
+    narrowed("R below R⁺", exact, ("radius lower", "radius upper", "set radius lower", "states v radius lower", "gain lower", "gain upper", "states v push lower"))
+    # whatever the radius is said to be, the gain is the largest ball's
+    tiny = Q("1" + STEP)
+    for radius in ("1", str(1 - tiny), "999999/1000000", "1/2", "1/4"):
+        d = apart(["gain <= 0.5", f"radius >= {float(Q(radius)):.7f}" if Q(radius).denominator < 10**7 else "radius >= 0.9999999"], radius)
+        claimed = [(that, "proved") for that in re.findall('that = "(.*)"', d.text)]
+        entries = d.entries("ball", claimed)
+        ends = {"lower": radius, "upper": "1"}
+        entries = but(entries, "results radius", ends, "results requirements 1 value", ends)
+        accept(f"largest ball, R = {radius}", entries)
+        for path in ("radius", "requirements 1 value"):
+            reject(f"largest ball, R = {radius}, {path} more", but(entries, f"results {path} lower", moved(radius, 1)), "results", "lower: more is claimed")
+        for end, half in (("lower", -Q(radius) / 2), ("upper", Q(radius) / 2)):
+            if radius != "1":
+                reject(f"largest ball, R = {radius}, slope as far as R, {end}", but(entries, f"proof 3 concludes {end}", str(half)), "proof line 4", "wider than what is concluded")
+            reject(f"largest ball, R = {radius}, slope nearly as far as R⁺, {end}", but(entries, f"proof 3 concludes {end}", moved("1/2" if half > 0 else "-1/2", -1 if half > 0 else 1)), "proof line 4", "wider than what is concluded")
+        for way in (1, -1):
+            at = str(way * Q(radius))
+            accept(f"largest ball, R = {radius}, a point at {at}", but(entries, "proof 9 witness at v", at, "proof 9 concludes", {"lower": str(Q(at) / 2), "upper": str(Q(at) / 2)}))
+            reject(f"largest ball, R = {radius}, a point beyond {at}", but(entries, "proof 9 witness at v", moved(at, way)), "proof line 10", "at.v: outside the range")
+        part = but(entries, "proof", smaller(entries["proof"]), "results set kind", "smaller ball")
+        reject(f"smaller ball, R = {radius}, all proved", part, "results", "[1].verdict: proved is claimed, undecided was derived")
+        part = but(part, "results requirements 0 verdict", "undecided")
+        reject(f"smaller ball, R = {radius}, a point leaves", part, "proof", "line 9 serves no later line")
+        part = but(part, "proof", lacking(part["proof"], 9))
+        accept(f"smaller ball, R = {radius}", part)
+        accept(f"smaller ball, R = {radius}, slope as far as R", but(part, "proof 3 concludes", {"lower": str(-Q(radius) / 2), "upper": str(Q(radius) / 2)}))
+        reject(f"smaller ball, R = {radius}, slope less far than R", but(part, "proof 3 concludes", {"lower": "-1/2", "upper": moved(str(Q(radius) / 2), -1)}), "proof line 4", "wider than what is concluded")
+    for radius, reason in ((moved("1", 1), "radius: the ball is not shown to lie in the region"), (moved("0", -1), "radius: the ball is not shown to lie in the region")):
+        reject(f"largest ball, R = {radius}", apart(radius=radius, outer="2").entries("ball", [("gain <= 0.5", "proved")]), "proof line 3", reason)
+
+
+radii_apart()
+
+
+def outer_radii() -> None:
+    """R⁺ is at least what the nearest of some points of the target shows, exactly."""
+    for way in ("", "-"):
+        good = apart(way=way).entries("ball", [("gain <= 0.5", "proved")])
+        accept(f"outer radius{way}", good)
+        for outer in (moved("1", -1), "1/2", moved("1/2", -1), "0", "-1", "-2"):
+            reject(f"outer radius{way} {outer}", but(good, "proof 2 concludes outer", outer), "proof line 3", UNSHOWN)
+        # farther than need be: as far as is said, but for the edge of the region that is nearer
+        more = str(1 + 2 * Q("1" + STEP))
+        beyond = but(good, "proof 2 concludes outer", more)
+        reject(f"outer radius{way}, more, the slope not", beyond, "proof line 4", "wider than what is concluded")
+        wide = but(beyond, "proof 3 concludes upper", moved("1/2", 1), "proof 5 concludes gain", moved("1/2", 1), "proof 7 concludes bound", moved("1/4", 1), "results requirements 0 verdict", "undecided")
+        accept(f"outer radius{way}, more", wide)
+        for end, value in (("lower", moved("-1/2", 1)), ("upper", str(Q(1, 2) + Q("1" + STEP) * Q(8, 9)))):
+            reject(f"outer radius{way}, more, slope {end}", but(wide, f"proof 3 concludes {end}", value), "proof line 4", "wider than what is concluded")
+        # a target enclosed loosely by its point is as far from the edge as its farther end
+        loose = but(wide, "proof 1 concludes", {"lower": str(-2 * Q("1" + STEP)), "upper": str(2 * Q("1" + STEP))})
+        accept(f"outer radius{way}, loose point", loose)
+        reject(f"outer radius{way}, loose point, less", but(loose, "proof 2 concludes outer", moved(more, -1)), "proof line 3", UNSHOWN)
+        one_sided = but(loose, "proof 1 concludes " + ("upper" if way == "" else "lower"), "0")  # the end that is farther from the nearer edge
+        accept(f"outer radius{way}, point loose on the other side", but(one_sided, "proof 2 concludes outer", "1"))
+        reject(f"outer radius{way}, point loose on the other side, less", but(one_sided, "proof 2 concludes outer", moved("1", -1)), "proof line 3", UNSHOWN)
+    good = apart().entries("ball", [("gain <= 0.5", "proved")])
+    rests, points = "ball rests on range target[v]", "ball rests on point target[v]"
+    for uses, reason in (([1], UNSHOWN), ([], rests), ([2], rests), ([2, 1], rests), ([1, 1], points), ([1, 2, 1], f"{points}, point target[v]"), ([1, 1, 2], f"{points}, point target[v]"), ([2, 2], rests)):
+        reject(f"largest ball uses {uses}", but(good, "proof 2 uses", uses), "proof line 3", reason)
+    accept("largest ball, a point twice", but(good, "proof 2 uses", [1, 2, 2]))
+    reject("largest ball without its point, however large", but(good, "proof 2 uses", [1], "proof 2 concludes outer", "1000"), "proof line 3", UNSHOWN)
+    for name, line in (("a point of the image", good["proof"][8]), ("a point of the miss", {**good["proof"][8], "proves": "target-miss[v]", "witness": {"bits": 0, "at": {"w": "0"}}, "concludes": {"lower": "0", "upper": "0"}}), ("the range of the target", good["proof"][0])):
+        reject(f"largest ball on {name}", but(good, "proof 1", line), "proof line 3", points)
+        first = but(good, "proof 0", line, "proof 1", good["proof"][1])
+        if name != "the range of the target":
+            reject(f"largest ball on {name} first", first, "proof line 3", rests)
+    reject("largest ball by another name", but(good, "proof 2 proves", "invariant"), "proof line 3", rests)
+    reject("smaller ball on a point", but(good, "proof 2 rule", "smaller-ball", "proof 2 concludes", {"radius": "1/2"}), "proof line 3", rests)
+    reject("smaller ball with an outer radius", but(good, "proof 2 rule", "smaller-ball", "proof 2 uses", [1]), "proof line 3", "concludes: the keys of smaller-ball are radius")
+    reject("largest ball without an outer radius", but(good, "proof 2 concludes outer", GONE), "proof line 3", "concludes: the keys of largest-ball are outer, radius")
+    reject("largest ball with a number", but(good, "proof 2 concludes outer", 1), "proof line 3", "concludes.outer: a proved number is written as text")
+
+
+outer_radii()
+
+
+def balls_kept() -> None:
+    """What is mapped into itself is the ball of R, and with it the largest: k R + ε <= R, settling and pushes are counted from R."""
+    small = [("gain <= 0.5", "proved"), ("settles", "undecided"), ("push(v) > 0", "undecided"), ("radius >= 0.5", "proved")]
+    good = verdicts("k R + ε = R below R⁺", apart([that for that, _ in small], w="1/4"), "ball", small)
+    above = "gain times radius plus residual exceeds the radius"
+    for key, value in (("residual", "1/4"), ("gain", "1/2")):
+        reject(f"k R + ε above R, below R⁺, by {key}", but(good, f"proof 5 concludes {key}", moved(value, 1)), "proof line 7", above)
+    reject("k R + ε above R, below R⁺, by R", but(good, "proof 2 concludes radius", moved("1/2", -1), "proof 9", GONE), "proof line 7", above)
+    reject("no push where R is the bound", but(good, "results states v push", {"lower": None, "upper": None}), "results", "results.states.v.push: nothing was derived")
+    larger = apart([that for that, _ in small], w="1/4", radius=moved("1/2", 1)).entries("ball", [(that, "proved") for that, _ in small])
+    accept("k R + ε below R by a step", but(larger, "results states v push", {"lower": "1" + STEP, "upper": None}))
+    reject("k R + ε below R by a step, push more", but(larger, "results states v push", {"lower": str(2 * Q("1" + STEP)), "upper": None}), "results", "push.lower: more is claimed")
+    # a push is refuted by an orbit and the edge: v = v²/4 + 7/64 at 1/8 leaves 7/8 at most
+    asked = [("push(v) > 0.875", "refuted"), ("push(v) >= 0.875", "undecided"), ("push(v) > 0.24", "proved"), ("bound < 0.125", "refuted"), ("settles", "proved")]
+    d = apart([that for that, _ in asked])
+    d.proof.append({**course("orbit", ["1/8", "1/8"], ["31/256"], distance="1/8", highest="1/8", lowest="1/8"), "uses": [7]})
+    good = verdicts("an orbit in the ball of R", d, "ball", asked)
+    accept("an orbit in the ball of R, exact", but(good, "results states v push", {"lower": "1/4", "upper": "7/8"}))
+    reject("an orbit in the ball of R, push less", but(good, "results states v push", {"lower": "1/4", "upper": moved("7/8", -1)}), "results", "push.upper: more is claimed")
+    # both rules in one proof: which ball the rest is about has to be one of them
+    base = apart().entries("ball", [("gain <= 0.5", "proved")])
+    for kept, other, kind in ((3, 4, "ball"), (4, 3, "smaller ball")):
+        both = copy.deepcopy(base)
+        both["proof"].insert(3, {**smaller(base["proof"])[2], "concludes": {"radius": "1/2"}})
+        for line in both["proof"][4:]:
+            line["uses"] = [n + (n > 3) if n != 3 else kept for n in line["uses"]]
+        reject(f"both rules, the set by line {kept}", but(both, "results set kind", kind), "results", "the proof has not exactly one ball about the target")
+        reject(f"both rules, the set by line {kept}, the gain by line {other}", but(both, "proof 4 uses", [other]), "proof line 8", "the gain refers to another set")
+
+
+balls_kept()
+
+
+# a target that moves: v⁺ = -v/4 - v²/32 on [-64, 2], c in [-1/8, 1/8] held, or turned round; c is said to lie in [-1/4, 1/4]
+# only, so R = 7/4; the largest ball has 15/8; c = -1/8 shows no more than R⁺ = 17/8, and c + e is then in [-9/4, 9/4], up to 2 in the region
+
+
+def sheared(asked: Sequence[str], side: int = 1, tail: bool = True) -> Draft:
+    """1 target, 2 a point of it, 3 ball; then 4 slope, 5 miss, 6 pair, 7 invariant, 8 bound, 9 a point that leaves, 10 a point of the slope."""
+    low, high = ("-64", "2") if side > 0 else ("-2", "64")
+    d = Draft(claim(f"-v/4 {'-' if side > 0 else '+'} v**2/32", f"[{low}, {high}]", 'c = { range = ["-1/8", "1/8"], held = true }', "c", asked))
+    d.range("target[v]", "-1/4", "1/4")
+    d.point("target[v]", {"c": str(Q(-side, 8))}, str(Q(-side, 8)))
+    d.theorem("largest-ball", "ball", [1, 2], radius="7/4", outer="17/8")
+    leaves = str(-112 * side)
+    if not tail:
+        d.point("image[v]", {"v": low if side > 0 else high}, leaves)
+        return d
+    d.range("slope[v,v]", "-3/8", "-7/64", [3])
+    d.range("target-miss[v]", *(("-321/2048", "319/2048") if side > 0 else ("-319/2048", "321/2048")), trees=["m"])
+    d.theorem("slope", "slope", [4, 5], gain="3/8", residual="321/2048")
+    d.theorem("invariant-ball", "invariant", [3, 6])
+    d.theorem("ultimate-bound", "bound[slope]", [7, 6], bound="321/1280")
+    d.point("image[v]", {"v": low if side > 0 else high}, leaves)
+    d.point("slope[v,v]", {"c": str(Q(side, 8)), "error(v)": str(Q(7 * side, 4))}, "-47/128", uses=[3])
+    return d
+
+
+def sheared_sets() -> None:
+    tiny = Q("1" + STEP)
+    for side, name in ((1, "sheared"), (-1, "sheared, turned round")):
+        reach = ("-9/4", "2") if side > 0 else ("-2", "9/4")
+        asked = [("gain <= 0.375", "proved"), ("gain < 0.3671875", "refuted"), ("gain < 0.375", "undecided"), ("radius >= 1.75", "proved"), ("radius > 1.75", "undecided"), ("radius > 2.125", "refuted"), ("settles", "proved"), ("push(v) > 1.4", "proved"), ("push(v) > 1.5", "undecided")]
+        within = [("value(v) <= 2", "proved"), ("value(v) < 2", "undecided"), ("value(v) < 1.875", "refuted"), ("value(v) <= 1.875", "undecided"), ("value(v) >= -2.25", "proved"), ("value(v) > -2.25", "undecided"), ("value(v) > -1.875", "refuted")]
+        if side < 0:
+            turned = {"<=": ">=", "<": ">", ">=": "<=", ">": "<"}
+            within = [(f"value(v) {turned[r]} {c[1:] if c[0] == '-' else '-' + c}", verdict) for that, verdict in within for _, r, c in [that.split()]]
+        d = sheared([that for that, _ in asked + within], side)
+        for n in range(len(asked) + 1, len(asked) + len(within) + 1):
+            d.range(f"require[{n}]", *reach, uses=[3])
+            for way in (1, -1):
+                d.point(f"require[{n}]", {"c": str(Q(way, 8)), "error(v)": str(Q(7 * way, 4))}, str(Q(15 * way, 8)), uses=[3])
+        good = verdicts(name, d, "ball", asked + within)
+        exact = but(good, "results radius", {"lower": "7/4", "upper": "17/8"}, "results gain", {"lower": "47/128", "upper": "3/8"}, "results requirements 9 value", {"lower": reach[0], "upper": reach[1]}, "results requirements 9 attained", {"lower": "-15/8", "upper": "15/8"},
+                    "results states v push", {"lower": str(Q(7, 4) - Q(321, 1280)), "upper": None})
+        accept(f"{name}, exact", exact)
+        narrowed(name, exact, ("radius lower", "radius upper", "gain lower", "gain upper", "requirements 9 value lower", "requirements 9 value upper", "requirements 9 attained lower", "requirements 9 attained upper", "states v push lower"))
+        # as far as R⁺, and no farther than the region: narrower by a step at either end is not enough
+        for line in (4, 11):
+            for end, by in (("lower", 1), ("upper", -1)):
+                reject(f"{name}, line {line}, {end}", but(good, f"proof {line - 1} concludes {end}", moved(good["proof"][line - 1]["concludes"][end], by)), f"proof line {line}", "wider than what is concluded")
+        for r in (Q(7, 4), Q(15, 8)):
+            short = (str(-r - Q(1, 8)), "2") if side > 0 else ("-2", str(r + Q(1, 8)))
+            reject(f"{name}, value as far as {r}", but(good, "proof 10 concludes", {"lower": short[0], "upper": short[1]}), "proof line 11", "wider than what is concluded")
+        # points and starts of courses lie within R of their target
+        for c, way in product(("-1/8", "0", "1/8"), (1, -1)):
+            at, error = f"error {7 * way}/4 of {c}", str(Q(7 * way, 4))
+            slope = str(-Q(1, 4) - side * (Q(error) + Q(c)) / 16)
+            there = but(good, "proof 9 witness at", {"c": c, "error(v)": error}, "proof 9 concludes", {"lower": slope, "upper": slope})
+            accept(f"{name}, a point at {at}", but(there, "results requirements 1 verdict", "undecided"))
+            for e in (moved(error, way), str(Q(15 * way, 8)), str(Q(17 * way, 8))):
+                reject(f"{name}, a point at {at}, beyond: {e}", but(there, "proof 9 witness at error(v)", e, "proof 9 concludes", {"lower": "-1", "upper": "0"}), "proof line 10", "at.error(v): outside the range")
+            start = Q(error) + Q(c)
+            witness = {"bits": 0, "held": {"c": c}, "start": [str(start)], "steps": [{}]}
+            path = {"rule": "path", "proves": "path", "uses": [7], "witness": witness, "concludes": {"distance": "0", "from": "9", "steps": "1"}}
+            n = len(good["proof"]) + 1
+            reject(f"{name}, a path from {at}", but(good, "proof", [*good["proof"], path]), "proof", f"line {n} serves no later line")
+            bounds = [Q(c) - Q(7, 4), Q(c) + Q(7, 4)]
+            orbit = {"rule": "orbit", "proves": "orbit", "uses": [7], "witness": {**witness, "start": [str(x) for x in bounds]}, "concludes": {"distance": "0", "highest": "-9", "lowest": "9"}}
+            if way > 0:
+                accept(f"{name}, an orbit about {c}", but(good, "proof", [*good["proof"], orbit]))
+            for x in (start + way * tiny, Q(c) + Q(15 * way, 8)):
+                reject(f"{name}, a path from {at}, beyond: {x}", but(good, "proof", [*good["proof"], but(path, "witness start", [str(x)])]), f"proof line {n}", "start: not shown to be in the set")
+                wide = sorted([x, bounds[0 if way > 0 else 1]])
+                reject(f"{name}, an orbit about {c}, beyond: {x}", but(good, "proof", [*good["proof"], but(orbit, "witness start", [str(y) for y in wide])]), f"proof line {n}", "start: not shown to be in the set")
+        # the nearest of several points counts, whichever comes first
+        short_ = sheared(["gain <= 0.375"], side).entries("ball", [("gain <= 0.375", "proved")])
+        points = [but(short_["proof"][1], "witness at c", str(Q(side * c, 8)), "concludes", {"lower": str(Q(side * c, 8)), "upper": str(Q(side * c, 8))}) for c in (-1, 0, 1)]
+        several = copy.deepcopy(short_)
+        several["proof"][1:2] = points
+        for line in several["proof"][4:]:
+            line["uses"] = [n + 2 * (n > 1) for n in line["uses"]]
+        reject(f"{name}, several points, and the range of the target", but(several, "proof 4 uses", [1, 2, 3, 4, 1]), "proof line 5", "ball rests on point target[v], point target[v], point target[v], point target[v]")
+        for uses, outer in (([1, 2, 3, 4], "15/8"), ([1, 4, 3, 2], "15/8"), ([1, 3, 4, 2], "15/8")):
+            found = but(several, "proof 4 uses", uses, "proof 4 concludes outer", outer, "proof 5 concludes upper", "-1/8")
+            accept(f"{name}, points {uses}", found)
+            reject(f"{name}, points {uses}, less", but(found, "proof 4 concludes outer", moved(outer, -1)), "proof line 5", UNSHOWN)
+            for end, by in (("lower", 1), ("upper", -1)):
+                reject(f"{name}, points {uses}, slope {end}", but(found, f"proof 5 concludes {end}", moved({"lower": "-3/8", "upper": "-1/8"}[end], by)), "proof line 6", "wider than what is concluded")
+        two = but(several, "proof", lacking(but(several, "proof 4 uses", [1, 2, 3])["proof"], 4))
+        for uses in ([1, 2, 3], [1, 3, 2]):
+            found = but(two, "proof 3 uses", uses, "proof 3 concludes outer", "2")
+            accept(f"{name}, points {uses}", found)
+            reject(f"{name}, points {uses}, less", but(found, "proof 3 concludes outer", moved("2", -1)), "proof line 4", UNSHOWN)
+        nearer = but(several, "proof 4 uses", [1, 2, 3], "proof 4 concludes outer", "2")
+        accept(f"{name}, a nearer point that the ball does not rest on", but(nearer, "results radius", {"lower": "7/4", "upper": "15/8"}))
+        reject(f"{name}, a nearer point that the ball does not rest on, radius", but(nearer, "results radius", {"lower": "7/4", "upper": moved("15/8", -1)}), "results", "radius.upper: more")
+        reject(f"{name}, a nearer point that the ball does not rest on, less", but(nearer, "proof 4 concludes outer", "15/8"), "proof line 5", UNSHOWN)
+        # exactly known, R is R⁺ and nothing is clipped
+        known = but(several, "proof 0 concludes", {"lower": "-1/8", "upper": "1/8"}, "proof 4 concludes", {"outer": "15/8", "radius": "15/8"}, "proof 4 uses", [1, 2, 3, 4], "proof 5 concludes upper", "-1/8")
+        accept(f"{name}, target known exactly", known)
+        reject(f"{name}, target known exactly, R⁺ below R", but(known, "proof 4 concludes outer", moved("15/8", -1)), "proof line 5", UNSHOWN)
+        reject(f"{name}, target known exactly, R more", but(known, "proof 4 concludes radius", moved("15/8", 1)), "proof line 5", "radius: the ball is not shown to lie in the region")
+
+
+sheared_sets()
+
+
+def sheared_shells() -> None:
+    """Shells of a set between two balls reach to R⁺, and its states no farther than the region."""
+    for side, name in ((1, "sheared shells"), (-1, "sheared shells, turned round")):
+        asked = [("residual <= 0.75", "proved"), ("sharp_bound <= 0.4459", "proved"), ("settles", "proved"), ("steps(v, 1.75, 0.75) <= 1", "proved"), ("steps(v, 1.76, 0.75) <= 9", "undecided")]
+        d = sheared([that for that, _ in asked], side, tail=False)
+        leaves = d.proof.pop()
+
+        def turned(low: str, high: str, side: int = side) -> tuple[str, str]:
+            return (low, high) if side > 0 else (str(-Q(high)), str(-Q(low)))
+
+        d.line("shells", "shells", [3], {"radii": ["1", "17/8"], "slope": "0"})
+        d.range("shell[1]", *turned("-913/2048", "751/2048"), [4], ["m", "m"])
+        d.range("shell[2]", *turned("-3/4", "271/512"), [4], ["m", "m"])
+        d.range("line[v]", "0", "3/4", [4], [TREES[side]])
+        d.theorem("curve", "curve", [4, 5, 6, 7], gain="0", residual="3/4", sharp="913/2048")
+        d.theorem("invariant-ball", "invariant", [3, 8])
+        d.theorem("ultimate-bound", "bound[curve]", [9, 8], bound="3/4")
+        d.proof.append(leaves)
+        good = verdicts(name, d, "ball", asked)
+        for last in ("7/4", "15/8", moved("17/8", -1), moved("17/8", 1), "2", "9/4"):
+            reject(f"{name}, as far as {last}", but(good, "proof 3 witness radii", ["1", last]), "proof line 4", "radii: the shells do not cover the set")
+        for line in (5, 6, 7):
+            for end, by in (("lower", 1), ("upper", -1)):
+                reject(f"{name}, line {line}, {end}", but(good, f"proof {line - 1} concludes {end}", moved(good["proof"][line - 1]["concludes"][end], by)), f"proof line {line}", "wider than what is concluded")
+        reject(f"{name}, sharp less", but(good, "proof 7 concludes sharp", moved("913/2048", -1)), "proof line 8", "sharp: less than what the shells show")
+        reject(f"{name}, residual less", but(good, "proof 7 concludes residual", moved("3/4", -1)), "proof line 8", "less than what the line shows")
+        # k R + ε = R, at R
+        for residual, ok in (("7/4", True), (moved("7/4", 1), False), ("15/8", False)):
+            more = but(good, "proof 7 concludes residual", residual, "proof 9 concludes bound", residual, "results requirements 0 verdict", "undecided")
+            if ok:
+                accept(f"{name}, residual {residual}", more)
+            else:
+                reject(f"{name}, residual {residual}", more, "proof line 9", "gain times radius plus residual exceeds the radius")
+        part = but(good, "proof", smaller(good["proof"][:10]), "results set kind", "smaller ball", *[x for n in (0, 1, 2) for x in (f"results requirements {n} verdict", "undecided")])
+        reject(f"{name}, a smaller ball as far as R⁺", part, "proof line 4", "radii: the shells do not cover the set")
+        accept(f"{name}, a smaller ball", but(part, "proof 3 witness radii", ["1", "7/4"], "proof 6 witness trees", ["m"], "proof 6 concludes upper", "1", "proof 7 concludes residual", "1", "proof 9 concludes bound", "1", "results requirements 3 verdict", "undecided"))
+        for at, inside in (("7/4", True), ("-7/4", True), (moved("7/4", 1), False), (moved("-7/4", -1), False)):
+            n = len(good["proof"]) + 1
+            point = {"rule": "point", "proves": "line[v]", "uses": [4], "witness": {"bits": 0, "at": {"c": "1/8", "error(v)": at}}, "concludes": {"lower": "0", "upper": "1"}}
+            reject(f"{name}, the line at {at}", but(good, "proof", [*good["proof"], point]), "proof" if inside else f"proof line {n}", f"line {n} serves no later line" if inside else "at.error(v): outside the range")
+
+
+TREES = {1: "1 m 1 m m", -1: "1 1 m m m"}  # finer where the state is clipped
+sheared_shells()
+
+
+# an irrational target, sqrt(2)/2 on [-32, 2], known to lie in [7/10, 71/100]: R = 129/100, R⁺ = 13/10, so v runs through [-3/5, 2]; or turned round
+
+
+def irrational_balls() -> None:
+    for side, name in ((1, "irrational target"), (-1, "irrational target, turned round")):
+        sign = "" if side > 0 else "-"
+
+        def turned(low: str, high: str, side: int = side) -> tuple[str, str]:
+            return (low, high) if side > 0 else (str(-Q(high)), str(-Q(low)))
+
+        asked = [("gain <= 0.25", "proved"), ("gain < 0.24875", "refuted"), ("gain < 0.25", "undecided"), ("radius >= 1.29", "proved"), ("radius > 1.29", "undecided"), ("radius > 1.3", "refuted"), ("settles", "proved"), (f"value({sign}v) <= 2", "proved"), (f"value({sign}v) < 1.99", "refuted"), (f"value({sign}v) >= -0.6", "proved"), (f"value({sign}v) > -0.6", "undecided"), (f"value({sign}v) > -0.58", "refuted")]
+        d = Draft(claim(f"{sign}(v**2/16 + 67/100)", "[-32, 2]" if side > 0 else "[-2, 32]", "u = [0, 1]", f"{sign}sqrt(2)/2", [that for that, _ in asked]))
+        d.range("target[v]", *turned("7/10", "71/100"), bits=64)
+        d.point("target[v]", {}, *turned("7/10", "71/100"), bits=64)
+        d.theorem("largest-ball", "ball", [1, 2], radius="129/100", outer="13/10")
+        d.range("slope[v,v]", "-3/40", "1/4", [3])
+        d.range("target-miss[v]", *turned("-3/500", "-1/200"), bits=64)
+        d.theorem("slope", "slope", [4, 5], gain="1/4", residual="3/500")
+        d.theorem("invariant-ball", "invariant", [3, 6])
+        d.theorem("ultimate-bound", "bound[slope]", [7, 6], bound="1/125")
+        d.point("image[v]", {"v": str(-32 * side)}, str(side * (64 + Q(67, 100))))
+        d.point("slope[v,v]", {"v": str(side * Q(199, 100))}, "199/800", uses=[3])
+        for n in range(8, 13):
+            d.range(f"require[{n}]", "-3/5", "2", [3])
+            for x in ("199/100", "-29/50"):
+                d.point(f"require[{n}]", {"v": str(side * Q(x))}, x, uses=[3])
+        good = verdicts(name, d, "ball", asked)
+        radius = {"lower": "129/100", "upper": "13/10"}
+        accept(f"{name}, exact", but(good, "results radius", radius, "results gain", {"lower": "199/800", "upper": "1/4"}, "results requirements 7 value", {"lower": "-3/5", "upper": "2"}))
+        for end, by in (("lower", 1), ("upper", -1)):
+            reject(f"{name}, radius {end} more", but(good, "results radius", {**radius, end: moved(radius[end], by)}), "results", f"radius.{end}: more is claimed")
+            for line in (4, 11):
+                reject(f"{name}, line {line}, {end}", but(good, f"proof {line - 1} concludes {end}", moved(good["proof"][line - 1]["concludes"][end], by)), f"proof line {line}", "wider than what is concluded")
+        for low in ("-29/50", "-59/100"):  # from q - R, and from p - R
+            reject(f"{name}, value from {low}", but(good, "proof 10 concludes lower", low), "proof line 11", "wider than what is concluded")
+        reject(f"{name}, R⁺ less", but(good, "proof 2 concludes outer", moved("13/10", -1)), "proof line 3", UNSHOWN)
+        reject(f"{name}, R more", but(good, "proof 2 concludes radius", moved("129/100", 1)), "proof line 3", "radius: the ball is not shown to lie in the region")
+        for end, way, beyond in (("199/100", 1, "2"), ("-29/50", -1, "-3/5")):
+            accept(f"{name}, a point at {end}", but(good, "proof 9 witness at v", str(side * Q(end)), "proof 9 concludes", {"lower": str(Q(end) / 8), "upper": str(Q(end) / 8)}, "results requirements 1 verdict", "refuted" if way > 0 else "undecided"))
+            for y in (moved(end, way), beyond):
+                reject(f"{name}, a point beyond {end}: {y}", but(good, "proof 9 witness at v", str(side * Q(y))), "proof line 10", "at.v: outside the range")
+        # a closer point, a smaller R⁺
+        closer = but(good, "proof 1 concludes", dict(zip(("lower", "upper"), turned("7071/10000", "442/625"), strict=True)), "proof 2 concludes outer", "12929/10000", "proof 3 concludes lower", str(-Q("5929/80000")))
+        accept(f"{name}, a closer point", closer)
+        reject(f"{name}, a closer point, R⁺ less", but(closer, "proof 2 concludes outer", moved("12929/10000", -1)), "proof line 3", UNSHOWN)
+        reject(f"{name}, a closer point, slope", but(closer, "proof 3 concludes lower", moved(str(-Q("5929/80000")), 1)), "proof line 4", "wider than what is concluded")
+        # courses start within R of the target, wherever in its range it is
+        for begin, inside in ((Q("1.997"), True), (Q("1.9972"), False), (Q("2"), False), (Q("-0.5828"), True), (Q("-0.583"), False), (Q("-0.59"), False)):
+            witness = {"bits": 64, "held": {}, "start": [str(side * begin)], "steps": [{}]}
+            path = {"rule": "path", "proves": "path", "uses": [7], "witness": witness, "concludes": {"distance": "0", "from": "9", "steps": "1"}}
+            n = len(good["proof"]) + 1
+            reject(f"{name}, a path from {begin}", but(good, "proof", [*good["proof"], path]), "proof" if inside else f"proof line {n}", f"line {n} serves no later line" if inside else "start: not shown to be in the set")
+        # shells about it reach to R⁺
+        for last, ok in (("13/10", True), ("129/100", False), (moved("13/10", -1), False), (moved("13/10", 1), False)):
+            shells = {"rule": "shells", "proves": "shells", "uses": [3], "witness": {"radii": [last], "slope": "0"}, "concludes": {}}
+            n = len(good["proof"]) + 1
+            reject(f"{name}, shells as far as {last}", but(good, "proof", [*good["proof"], shells]), "proof" if ok else f"proof line {n}", f"line {n} serves no later line" if ok else "radii: the shells do not cover the set")
+
+
+irrational_balls()
+
+
+# requirements over ranges of their own, with a set and routes of their own: v⁺ = k v + g w + 0 p, |w| <= m = 1/4, on [-1, 1]; k = 1/2, g = 1
+
+
+def over_proofs() -> None:
+    def within(that: str, name: str, low: str, high: str) -> str:
+        return f'"{that}"\nover = {{ {name} = ["{low}", "{high}"] }}'
+
+    asked = [
+        ("gain <= 0.5", "proved"), ("bound <= 0.25", "proved"), ("radius >= 2", "proved"), ("gain <= 0.75", "proved"), ("residual <= 0.5", "proved"), ("radius > 1", "refuted"),
+        ("value(v) < 9", "undecided"), ("gain < 0.75", "proved"), ("gain < 0.8", "undecided"), ("gain < 0.9", "undecided"), ("radius >= 1", "undecided"), ("settles", "proved"),
+    ]
+    ranges = {2: ("w", "-1/8", "1/8"), 3: ("v", "-2", "2"), 4: ("k", "1/4", "3/4"), 5: ("g", "0", "2"), 7: ("w", "-1/8", "1/8"), 9: ("m", "0", "1"), 10: ("n", "1", "2"), 11: ("p", "0", "1"), 12: ("w", "-1/8", "1/8")}
+    text = claim("k*v + g*w + 0*p + 0*v**n", uncertain='w = ["-m", "m"]\np = { values = [1, 2] }', rest='[constants]\nk = "1/2"\nm = "1/4"\nn = 2\n[gains]\ng = 1',
+                 requires=[within(that, *ranges[n]) if n in ranges else that for n, (that, _) in enumerate(asked, 1)])
+
+    def lines(k: tuple[str, str], miss: str, image: str, bound: str, radius: str = "1", listed: int = 2) -> list[dict[str, Any]]:
+        """1 target, 2 a point of it, 3 ball, 4 image, 5 invariant, 6 slope, 7 miss, 8 pair, 9 bound."""
+        each = ["d"] * listed
+        d = Draft(text)
+        d.range("target[v]", "0", "0")
+        d.point("target[v]", {}, "0")
+        d.theorem("largest-ball", "ball", [1, 2], radius=radius, outer=radius)
+        d.range("image[v]", f"-{image}", image, trees=each)
+        d.theorem("invariant-region", "invariant", [1, 4])
+        d.range("slope[v,v]", *k, uses=[5], trees=each)
+        d.range("target-miss[v]", f"-{miss}", miss, trees=each)
+        d.theorem("slope", "slope", [6, 7], gain=k[1], residual=miss)
+        d.theorem("ultimate-bound", "bound[slope]", [5, 8], bound=bound)
+        return d.proof
+
+    half = ("1/2", "1/2")
+    parts = {0: lines(half, "1/4", "3/4", "1/2"), 2: lines(half, "1/8", "5/8", "1/4"), 3: lines(half, "1/4", "5/4", "1/2", "2"), 4: lines(("1/4", "3/4"), "1/4", "1", "1"), 5: lines(half, "1/2", "1", "1"), 12: lines(half, "1/8", "5/8", "1/4")}
+    d, first = Draft(text), dict[int, int]()
+    for n, part in parts.items():
+        first[n] = len(d.proof)
+        d.proof += [{**line, "proves": f"over[{n}]:{line['proves']}" if n else line["proves"], "uses": [u + first[n] for u in line["uses"]]} for line in part]
+    good = verdicts("requirements over ranges", d, "region", asked)
+    accept("requirements over ranges, known", but(good, "results requirements 1 value", {"lower": None, "upper": "1/4"}, "results requirements 2 value", {"lower": "2", "upper": "2"}, "results requirements 3 value", {"lower": None, "upper": "3/4"}, "results requirements 4 value", {"lower": None, "upper": "1/2"}, "results requirements 11 value", {"lower": None, "upper": "1/4"},
+                                                        "results radius", {"lower": "1", "upper": "1"}, "results gain", {"lower": None, "upper": "1/2"}, "results residual", {"lower": None, "upper": "1/4"}))
+    narrowed("requirements over ranges", but(good, "results requirements 1 value", {"lower": None, "upper": "1/4"}, "results requirements 2 value", {"lower": "2", "upper": "2"}, "results requirements 3 value", {"lower": None, "upper": "3/4"}, "results requirements 4 value", {"lower": None, "upper": "1/2"}),
+             ("requirements 1 value upper", "requirements 2 value lower", "requirements 2 value upper", "requirements 3 value upper", "requirements 4 value upper"))
+    for n, after in first.items():
+        for k, key in ((1, "lower"), (4, "lower"), (4, "upper"), (6, "lower"), (6, "upper"), (7, "lower"), (7, "upper")):
+            line = good["proof"][after + k - 1]
+            reject(f"over[{n}], line {k}, {key}", but(good, f"proof {after + k - 1} concludes {key}", moved(line["concludes"][key], 1 if key == "lower" else -1)), f"proof line {after + k}", "wider than what is concluded")
+        radius = good["proof"][after + 2]["concludes"]["radius"]
+        reject(f"over[{n}], radius", but(good, f"proof {after + 2} concludes", {"radius": moved(radius, 1), "outer": "9"}), f"proof line {after + 3}", "not shown to lie in the region")
+        reject(f"over[{n}], outer", but(good, f"proof {after + 2} concludes outer", moved(radius, -1)), f"proof line {after + 3}", UNSHOWN)
+        if n:
+            for k, uses in ((3, [1, after + 2]), (3, [after + 1, 2]), (5, [after + 1, 4]), (6, [5])):
+                reject(f"over[{n}], line {k} uses {uses}", but(good, f"proof {after + k - 1} uses", uses), f"proof line {after + k}", "uses: lines about other ranges")
+            again = but(good, "proof", [*good["proof"], {**good["proof"][after + 2], "rule": "smaller-ball", "uses": [after + 1], "concludes": {"radius": "1"}}])
+            reject(f"over[{n}], a ball by both rules", again, "results", "the proof has not exactly one ball about the target")
+            reject(f"over[{n}], a ball twice", but(good, "proof", [*good["proof"], good["proof"][after + 2]]), "results", "ball is proved more than once by largest-ball")
+            bare = but(good, "proof", lacking(good["proof"], *range(after + 1, after + 10)))
+            reject(f"over[{n}], no lines", bare, "results", f"[{n}].verdict: proved is claimed, undecided was derived")
+            accept(f"over[{n}], no lines, undecided", but(bare, f"results requirements {n - 1} verdict", "undecided"))
+            reject(f"over[{n}], no ball", but(good, "proof", [*bare["proof"], good["proof"][after]]), "results", "the proof has not exactly one ball about the target")
+    end = len(good["proof"])
+    line = {"rule": "range", "proves": "target[v]", "uses": [], "witness": {"bits": 0, "trees": ["d"]}, "concludes": {"lower": "0", "upper": "0"}}
+    for number, reason in ((1, "no requirement that sets ranges"), (7, "no requirement that sets ranges"), (8, "no requirement that sets ranges"), (13, "no requirement that sets ranges"), (9999, "no requirement that sets ranges"),
+                           (9, "m also sets an exponent or the end of a range"), (10, "n also sets an exponent or the end of a range")):
+        reject(f"over[{number}]", but(good, "proof", [*good["proof"], {**line, "proves": f"over[{number}]:target[v]"}]), f"proof line {end + 1}", f"over[{number}]: {reason}")
+    reject("over[11], a list no more", but(good, "proof", [*good["proof"], {**line, "proves": "over[11]:image[v]", "witness": {"bits": 0, "trees": ["d", "d"]}, "concludes": {"lower": "-9", "upper": "9"}}]), f"proof line {end + 1}", "2 trees for 1 cells")
+    for name in ("over[0]:target[v]", "over[02]:target[v]", "over[10000]:target[v]", "over[]:target[v]", "over[2] target[v]", "over[2]: target[v]", "Over[2]:target[v]", "over[٢]:target[v]"):
+        reject(f"{name}, no obligation", but(good, "proof", [*good["proof"], {**line, "proves": name}]), f"proof line {end + 1}", "target[v] needs a line that gives its set")
+
+
+over_proofs()
+
+
+@unit
+def ranges_of_requirements(checker: Any) -> None:
+    module, text = checker.derive, claim(requires=['"gain < 1"\nover = { w = [0, 1] }', "gain < 2", '"settles"\nover = { w = [0, 2] }'])
+    statement = checker.statement.read_statement(text, {}, {})
+    for number, high in ((1, 1), (3, 2)):
+        d = module.Derivation(module.varied(statement, number))
+        assert d.occurs(d.statement.uncertain["w"]) == (0, high)
+        assert [bool(r.over) for r in d.statement.requirements] == [number != 1, False, number != 3]
+    for number in (-2, -1, 0, 2, 4, 5):
+        with refuses(module.Unprovable, f"over[{number}]: no requirement that sets ranges"):
+            module.varied(statement, number)
+    first, *others = statement.requirements  # no reader lets a name that is neither known nor given a range come as far
+    unknown = replace(statement, requirements=(replace(first, over={"f": first.over["w"]}), *others))
+    with refuses(module.Unprovable, "over[1]: f is set free for a sensitivity only"):
+        module.varied(unknown, 1)
+
+
+def over_constants() -> None:
+    """A constant that `over` names is followed by the requirement, and not by the ball's centre."""
+    asked = [("value(v) <= 2", "proved"), ("value(v) < 2", "refuted"), ("value(v + k) <= 3", "proved"), ("value(v + k) < 3", "refuted")]
+    d = moving()
+    d.text = claim("c + k + (v - c - k)**2/4 + w", "[-3, 2]", 'c = { range = [-1, 1], held = true, change = "1/4" }\nw = ["-1/4", "1/4"]', "c + k", [f'"{that}"\nover = {{ k = [0, 1] }}' for that, _ in asked], rest="[constants]\nk = 0")
+    d.proof = d.proof[:10]
+    for n in range(1, 5):
+        d.range(f"require[{n}]", "-2", "2" if n < 3 else "3", [3])
+        d.point(f"require[{n}]", {"c": "1", "error(v)": "1"} | ({"k": "1"} if n > 2 else {}), "2" if n < 3 else "3", uses=[3])
+    good = verdicts("a constant over a range, about a moving target", d, "ball", asked)
+    for n, ends in ((11, ("-2", "2")), (15, ("-2", "3"))):
+        for end, value, by in zip(("lower", "upper"), ends, (1, -1), strict=True):
+            reject(f"a constant over a range, line {n}, {end}", but(good, f"proof {n - 1} concludes {end}", moved(value, by)), f"proof line {n}", "wider than what is concluded")
+
+
+def over_held() -> None:
+    """A ball about a target that moves is known for the target's own range, up to its ends."""
+    for low, high, ok in (("-1", "1", True), ("0", "1/2", True), (moved("-1", 1), "1", True), (moved("-1", -1), "1", False), ("-1", moved("1", 1), False), ("-2", "2", False), ("1", "2", False), ("-2", "-1", False)):
+        d = moving()
+        that = f'"value(v) <= 9"\nover = {{ c = ["{low}", "{high}"] }}'
+        d.text = claim("c + (v - c)**2/4 + w", "[-3, 2]", 'c = { range = [-1, 1], held = true, change = "1/4" }\nw = ["-1/4", "1/4"]', "c", [that])
+        d.proof = d.proof[:10]
+        ends = str(Q(low) - 1), str(Q(high) + 1)
+        d.range("require[1]", *ends, uses=[3])
+        entries = d.entries("ball", [("value(v) <= 9", "proved")])
+        if not ok:
+            reject(f"over a held quantity from {low} to {high}", entries, "proof line 11", "c: the set moves with it, and is known for its own range only")
+            continue
+        accept(f"over a held quantity from {low} to {high}", entries)
+        for end, value, by in zip(("lower", "upper"), ends, (1, -1), strict=True):
+            reject(f"over a held quantity from {low} to {high}, {end}", but(entries, f"proof 10 concludes {end}", moved(value, by)), "proof line 11", "wider than what is concluded")
+    for name, uncertain, target, reach, wide in (
+        ("of which the target knows nothing", "c = [-1, 1]", "0", "0", "[-2, 2]"), ("held, of which the target knows nothing", "c = { range = [-1, 1], held = true }", "0", "0", "[-2, 2]"),
+        ("of a list of which the target knows nothing", "c = { values = [-1, 0, 1], held = true }", "0", "0", "[-1, 1]"), ("of a list", "c = { values = [-1, 0, 1], held = true }", "c/2", "1/2", "[-1, 1]"),
+    ):
+        d = Draft(claim("v/2", "[-2, 2]", uncertain, target, [f'"value(v + c) <= 9"\nover = {{ c = {wide} }}']))
+        d.range("target[v]", str(-Q(reach)), reach, trees=["d"] * (3 if Q(reach) else 1))
+        d.theorem("smaller-ball", "ball", [1], radius="3/2")
+        d.range("require[1]", "-9", "9", uses=[2])
+        entries = d.entries(None, [("value(v + c) <= 9", "undecided")])
+        if Q(reach):
+            reject(f"over a quantity {name}", entries, "proof line 3", "c: the set moves with it, and is known for its own range only")
+        else:
+            accept(f"over a quantity {name}", entries)
+        # where the region is the set nothing moves with it
+        d.proof.pop()
+        d.range("image[v]", "-1", "1")
+        d.theorem("invariant-region", "invariant", [1, 3])
+        d.range("require[1]", "-9", "9", uses=[4])
+        accept(f"over a quantity {name}, in the region", d.entries("region", [("value(v + c) <= 9", "proved")]))
+
+
+over_constants()
+over_held()
+
+
+def targets_that_fall() -> None:
+    """A target moves as far whichever way it is led: target -c, of slope -1."""
+    derived = [("residual <= 0.5", "proved"), ("residual < 0.5", "refuted"), ("gain <= 0.5", "proved"), ("settles", "undecided")]
+    d = moving()
+    d.text = d.text.replace("c + (v - c)**2/4 + w", "-c + (v + c)**2/4 + w").replace('[target]\nv = "c"', '[target]\nv = "-c"')
+    d.proof[1]["witness"]["at"] = {"c": "-1"}
+    d.proof[5]["concludes"] = {"lower": "-1", "upper": "-1"}
+    d.proof[9]["witness"]["at"]["c"] = "-1"
+    good = verdicts("falling target", d, "ball", derived)
+    exact = but(good, "results residual", {"lower": "1/2", "upper": "1/2"}, "results bound", {"lower": "1", "upper": "1"})
+    accept("falling target, exact", exact)
+    narrowed("falling target", exact, ("residual lower", "residual upper", "bound lower", "bound upper"))
+    # known loosely, a slope moves the target by its largest magnitude at most, by its least surely, and by nothing surely where its sign is not known
+    loose = but(exact, "proof 5 concludes upper", moved("-1", 1), "results requirements 1 verdict", "undecided")
+    reject("falling target, slope known loosely", loose, "results", "residual.lower: more is claimed")
+    least = but(loose, "results residual lower", moved("1/2", -1), "results bound", None)
+    accept("falling target, slope known loosely, least", but(least, "results residual lower", str(Q(1, 2) - Q("1" + STEP) / 4)))
+    reject("falling target, slope known loosely, less than least", but(least, "results residual lower", str(Q(1, 2) - Q("1" + STEP) / 5)), "results", "residual.lower: more is claimed")
+    reject("falling target, slope known loosely below", but(good, "proof 5 concludes lower", moved("-1", -1)), "proof line 7", "gain or residual: less")
+    for name, lower, upper in (("falling", "-1", "1/8"), ("rising", "-1/8", "1")):
+        across = moving(extra=False)
+        del across.proof[7:]
+        across.proof[5]["concludes"] = {"lower": lower, "upper": upper}
+        if name == "falling":
+            across.text, across.proof[1] = d.text, d.proof[1]
+        across.point("target-miss[v]", {"c": "0", "w": "1/4"}, "1/4")
+        entries = across.entries(None, [(that, "undecided") for that in MOVING])
+        accept(f"{name} target, of a slope across 0", but(entries, "results residual", {"lower": "1/4", "upper": "1/2"}))
+        reject(f"{name} target, of a slope across 0, more", but(entries, "results residual", {"lower": moved("1/4", 1), "upper": "1/2"}), "results", "residual.lower: more is claimed")
+
+
+targets_that_fall()
+
+
+def any_set_would_do() -> None:
+    """With `shrink`, points and orbits of one set refute only what holds on every set."""
+    asked = [
+        ("residual < 0.5", "refuted"), ("residual <= 0.5", "proved"), ("gain < 0.5", "undecided"), ("bound < 1", "undecided"), ("bound <= 1", "proved"), ("settles", "undecided"), ("push(v) > 0", "undecided"), ("radius > 1", "refuted"),
+        ("value(v) < 1", "undecided"), ("value(v) < 0.9", "undecided"), ("value(w) < 0.5", "refuted"), ("value(w) < 0.4", "undecided"), ("sharp_bound < 1", "undecided"),
+    ]
+    d = region(claim(requires=[that for that, _ in asked], top="shrink = true"))
+    d.proof.append(course("orbit", ["1", "1"], ["1/2"], distance="1", highest="1", lowest="1"))
+    d.range("require[9]", "-1", "1", [4])
+    d.point("require[9]", {"v": "1"}, "1", uses=[4])
+    d.point("require[10]", {"v": "1"}, "1", uses=[4])
+    d.range("require[11]", "-1/2", "1/2", [4])
+    d.point("require[11]", {"w": "1/2"}, "1/2", uses=[4])
+    d.point("require[12]", {"w": "1/2"}, "1/2", uses=[4])
+    good = verdicts("any set", d, "region", asked)
+    only = {"residual < 0.5": "refuted", "gain < 0.5": "refuted", "bound < 1": "refuted", "settles": "refuted", "push(v) > 0": "refuted", "value(v) < 1": "refuted", "value(v) < 0.9": "refuted", "value(w) < 0.4": "refuted", "sharp_bound < 1": "refuted"}
+    d.text = d.text.replace("shrink = true", "shrink = false")
+    verdicts("this set only", d, "region", [(that, only.get(that, verdict)) for that, verdict in asked])
+    accept("any set, exact", but(good, "results bound", {"lower": "1", "upper": "1"}, "results residual", {"lower": "1/2", "upper": "1/2"}))
+
+
+any_set_would_do()
 
 
 # how a certificate and its claim are read
@@ -1838,16 +2454,20 @@ def irrational_target(checker: Any) -> None:
     """A fixed irrational target: the range of the set contains the ball, points lie in it."""
     d = derivation(checker, claim("v/2 + w", "[-9, 9]", target="sqrt(2)"))
     target = ROOT - Q(1, 10**30), ROOT + Q(1, 10**30)
-    meaning = d.meaning("slope[v,v]", checker.derive.Domain(True, Q(2), target))
-    variable = next(v for v in meaning.variables if v.name == "v")
-    assert variable.cells == ((target[0] - 2, target[1] + 2),) and variable.inside == (target[1] - 2, target[0] + 2)
-    assert meaning.on_set and meaning.by == "v"
+    for beyond, low, high in ((Q(0), target[0] - 2, target[1] + 2), (Q(1), target[0] - 3, target[1] + 3), (Q(6), target[0] - 8, Q(9)), (Q(9), Q(-9), Q(9))):
+        domain = checker.derive.Domain(True, Q(2), target, beyond=beyond)
+        assert domain.outer == 2 + beyond
+        meaning = d.meaning("slope[v,v]", domain)
+        variable = next(v for v in meaning.variables if v.name == "v")
+        assert variable.cells == ((low, high),) and variable.inside == (target[1] - 2, target[0] + 2)
+        assert meaning.on_set and meaning.by == "v"
     held = "c = { range = [0, 1], held = true }"
     d = derivation(checker, claim("v/2 + w", "[-9, 9]", held + '\nw = ["-1/2", "1/2"]', "c", ["value(v)", "value(w)"]))
-    domain = checker.derive.Domain(True, Q(2), (Q(0), Q(1)))
-    found = {v.name: (v.cells, v.inside) for v in d.meaning("require[1]", domain).variables}
-    assert found == {"c": (((Q(0), Q(1)),), (Q(0), Q(1))), "error(v)": (((Q(-2), Q(2)),), (Q(-2), Q(2)))}
-    assert d.meaning("require[1]", domain).on_set and not d.meaning("require[2]", domain).on_set
+    for beyond in (Q(0), Q(1)):
+        domain = checker.derive.Domain(True, Q(2), (Q(0), Q(1)), beyond=beyond)
+        found = {v.name: (v.cells, v.inside) for v in d.meaning("require[1]", domain).variables}
+        assert found == {"c": (((Q(0), Q(1)),), (Q(0), Q(1))), "error(v)": (((-2 - beyond, 2 + beyond),), (Q(-2), Q(2)))}
+        assert d.meaning("require[1]", domain).on_set and not d.meaning("require[2]", domain).on_set
     assert d.moving() == []
 
 
@@ -2106,6 +2726,13 @@ def readings(checker: Any) -> None:
     encloses(checker, "r", "v", {"v": ("1/2", "3/2"), "T": (0, 0)}, {"dcms": ("-7/2", 6)}, at=plain)
     encloses(checker, "r + v", "v", {"v": (0, "1/2"), "T": (1, 1)}, {"dcms": ("-3/2", "-3/2")}, at='{ x = "T", y = "v" }')
     encloses(checker, "r + v*0", "v", {"v": (0, "1/2"), "T": (1, 1)}, {"dcms": (0, 0)}, at='{ x = "T", y = "T" }')
+    # a variable times and plus numbers moves wherever its box has extent; anything else may stand still on a part of it
+    for axis, v, slopes in (
+        ("2*v", ("1/2", 1), (-7, -7)), ("v*2", ("1/2", 1), (-7, -7)), ("2*v", (0, "1/2"), (12, 12)), ("v/2", (2, 3), ("-7/4", "-7/4")), ("v + 1", (0, 1), ("-7/2", "-7/2")), ("1 + v", (0, 1), ("-7/2", "-7/2")), ("v - 1", (1, 2), (6, 6)), ("v - 1", (2, 3), ("-7/2", "-7/2")),
+        ("2 - v", (0, 1), ("7/2", "7/2")), ("2 - v", (1, 2), (-6, -6)), ("-v", (-2, -1), ("7/2", "7/2")), ("-(2*v - 3)", ("1/2", 1), (7, 7)), ("(v + 1)/2", (1, 2), ("-7/4", "-7/4")),
+        ("v + 0*T", (1, 2), ("-7/2", 6)), ("v + T", (1, 2), ("-7/2", 6)), ("max(v, 1)", (1, 2), ("-7/2", 6)), ("1/v", ("1/2", 1), (-24, 14)), ("v*v", (1, "3/2"), ("-21/2", 18)), ("0*v + 1", (1, 2), (0, 0)),
+    ):
+        encloses(checker, "r", "v", {"v": v, "T": (0, 0)}, {"d": slopes}, at=f'{{ x = "{axis}", y = "T" }}')
     rounded = '{ x = "v + 0*sin(v)", y = "T" }'  # ends of an axis that is not rational may not be exact
     encloses(checker, "r", "v", {"v": (1, 2), "T": (0, 0)}, {"dcms": ("-7/2", 6)}, at=rounded, bits=64)
     encloses(checker, "r", "", {"v": (1, 2), "T": (0, 0)}, {"dcms": ("7/2", 7)}, at=rounded, bits=64)
@@ -2642,7 +3269,7 @@ def reading_at_a_corner() -> Case:
     text = claim("(r - 100*max(v, u) + 100*u)/200 + 1.7", "[1, 2]", "u = [1, 9]", "1.5", ["gain <= 0.48"], rest=library)
     d = Draft(text, {"l.csv": "a,b,r\n0,0,0\n0,100,0\n100,0,0\n100,100,10000\n"})
     d.range("target[v]", "3/2", "3/2")
-    d.theorem("largest-ball", "ball", [1], radius="1/2")
+    d.theorem("smaller-ball", "ball", [1], radius="1/2")
     d.range("image[v]", "1", "2", trees=["0 0 0 0 0 m m m m m m"])
     d.theorem("invariant-region", "invariant", [1, 3])
     d.range("slope[v,v]", "-0.4725", "0.4725", [4], ["c"])
@@ -2662,7 +3289,7 @@ def cells_beyond_a_corner() -> Case:
     d = Draft(text, {"l.csv": "a,r\n0,0\n1.5,1.5\n10,10\n"})
     tree = "0 0 0 d d 0 d d 0 0 d d 0 d d"
     d.range("target[v]", "3/2", "3/2")
-    d.theorem("largest-ball", "ball", [1], radius="1/2")
+    d.theorem("smaller-ball", "ball", [1], radius="1/2")
     d.range("image[v]", "1", "2", trees=[tree], bits=60)
     d.theorem("invariant-region", "invariant", [1, 3])
     d.range("slope[v,v]", "-0.376", "0.376", [4], ["c"], bits=60)
@@ -2676,11 +3303,16 @@ CASES |= {"a reading at a corner": reading_at_a_corner(), "cells beyond a corner
 
 def test_these_are_lines_that_prove_writes() -> None:
     """What is written by hand here has the form, and the numbers, of what the search finds for the same claim."""
-    found = proved(PLAIN).entries["proof"]
-    for line in BASE["proof"]:
-        if line["rule"] == "point":
-            assert any((x["rule"], x["proves"]) == ("point", line["proves"]) for x in found)
-        else:
+    about, led = ball(["settles"], LEAVES), moving()
+    led.proof[4]["witness"]["trees"] = ["d"]  # the other form is for maps that are turned round
+    for text, lines in ((PLAIN, BASE["proof"]), (about.text, about.proof), (led.text, led.proof)):
+        found = proved(text).entries["proof"]
+        for line in lines:
+            if line["rule"] == "point":
+                assert any((x["rule"], x["proves"]) == ("point", line["proves"]) for x in found)
+                continue
+            if line["rule"] == "smaller-ball":  # beside a region the ball is there for its radius
+                line = {**line, "rule": "largest-ball", "concludes": {**line["concludes"], "outer": "1"}}
             assert any({**x, "uses": []} == {**line, "uses": []} for x in found), line
 
 

@@ -1,0 +1,99 @@
+"""Statements about stances that hold for some signals, ranges or points only: none may count as proved."""
+
+from __future__ import annotations
+
+import pytest
+
+from tests.conftest import proved
+from tests.stances import stance
+from ultibound.checker.calculus import Unprovable
+from ultibound.checker.derive import Derivation, Domain, Fraction
+from ultibound.checker.statement import read_statement
+from ultibound.claim import ClaimError
+
+SWING = "v_cmd = { range = [0.4, 0.5], held = true }\ngust = { range = [-1, 1], within = true }\n"
+STILL = 'x = 0\nxd = 0'
+
+
+def verdicts(text: str) -> list[str]:
+    try:
+        return [r["verdict"] for r in proved(text).entries["results"]["requirements"]]
+    except ClaimError:
+        return ["refused"]
+
+
+def meaning(text: str) -> None:
+    d = Derivation(read_statement(text, {}, {}))
+    d.meaning("require[1]", Domain(False, Fraction(0), (Fraction(2, 5), Fraction(1, 2))))
+
+
+def over(name: str, low: float, high: float) -> str:
+    return f"over = {{ {name} = [{low}, {high}] }}\n"
+
+
+def test_a_signal_that_is_answered_both_ways() -> None:
+    """x'' = −w² x + u from rest: |x| reaches 0.13 with u = sign(sin(w(T − t))), constant signals 0.066."""
+    text = stance(rates='x = "xd"\nxd = "-w2*x + gust"', start=STILL, step="0.3*v + 0.7*v_cmd", define="",
+                  uncertain=SWING + "T = [1.14, 1.15]\nw2 = [30, 31]", requires=("value(x) <= 0.07",))  # fmt: skip
+    assert "proved" not in verdicts(text)
+    kept = text.replace("-w2*x", "w2*x").replace("[30, 31]", "[1, 2]")
+    with pytest.raises(Unprovable, match="not shown to last"):
+        meaning(kept + over("w2", -31, -30))
+
+
+def test_sensitivities_by_what_a_signals_effect_follows() -> None:
+    """y' = −2y + u: u = −1 until just before T, then 1, changes y(T) by 1.955 a second of T."""
+    text = stance(rates='y = "-2*y + gust"', start="y = 0", define="", step="0.3*v_cmd + y",
+                  uncertain=SWING + "T = [1.5, 1.6]", requires=("sensitivity(v, T) <= 0.2",))  # fmt: skip
+    with pytest.raises(Unprovable, match="may take any course"):
+        meaning(text)
+    assert verdicts(text) == ["undecided"]
+
+
+def test_a_gain_where_a_signals_effect_follows_the_state() -> None:
+    """The pair holds, so settling is proved; the slope over all courses of the signal is larger than its k."""
+    text = stance(rates='y = "-2*y + gust"', start="y = 0", define="", step="v_cmd + 0.5*y", duration="0.5 + 0.2*v", state="[0, 1]",
+                  uncertain=SWING.replace("[-1, 1]", "[-0.4, 0.4]"), requires=("gain <= 0.05", "settles"))  # fmt: skip
+    assert verdicts(text) == ["undecided", "proved"]
+
+
+@pytest.mark.parametrize("rate", ["dt(dt(dt(x)))", "dt(gust*t)", "dt(gust)"])
+def test_signals_have_no_rate(rate: str) -> None:
+    text = stance(rates=f'x = "xd"\nxd = "x + gust"\ny = "{rate}"', start=STILL + "\ny = 0", define="", step="0.3*v + 0.7*v_cmd",
+                  uncertain=SWING + "T = [0.5, 0.6]", requires=("value(y) <= 0.5",))  # fmt: skip
+    with pytest.raises(Unprovable, match="no time rate"):
+        meaning(text)
+    assert verdicts(text) == ["refused"]
+
+
+@pytest.mark.parametrize("expression", ["dt(sqrt(a))", "dt(1/a + t)", "dt(log(a)*2)", "dt(tan(2*a))"])
+def test_what_is_not_defined_has_no_rate(expression: str) -> None:
+    text = stance(rates='y = "-2*y"', start='y = "v"', define="", step="0.3*v + 0.7*v_cmd",
+                  uncertain="v_cmd = { range = [0.4, 0.5], held = true }\nT = [0.5, 0.6]\na = [-1, 1]",
+                  requires=(f"value({expression}) <= 9",))  # fmt: skip
+    assert "proved" not in verdicts(text)
+
+
+def test_a_stance_that_runs_backwards() -> None:
+    text = stance(rates='y = "-2*y"', start='y = "v"', define="", step="0.3*v + 0.7*v_cmd", duration="T - 1",
+                  uncertain="v_cmd = { range = [0.4, 0.5], held = true }\nT = [0.5, 0.6]", requires=("value(y) <= 10",))  # fmt: skip
+    assert "proved" not in verdicts(text) and "proved" not in verdicts(text + over("v", 0, 1))
+    forward = text.replace("T - 1", "T").replace("value(y) <= 10", "throughout(t/T <= 1)")
+    assert verdicts(forward) == ["proved"]
+    with pytest.raises(Unprovable, match="not shown to last"):
+        meaning(forward + over("T", -1, 1))
+    assert verdicts(forward + over("T", -1, 1)) == ["undecided"]
+
+
+def test_a_correction_that_carries_a_signal() -> None:
+    text = stance(rates='y = "-2*y + 0.1 + wind"', start='y = "v"', define='wind = "gust"', step="0.3*v + 0.7*v_cmd + 0.01*y",
+                  duration="1", uncertain=SWING, top='correction = ["wind"]')  # fmt: skip
+    assert verdicts(text) in (["proved"], ["undecided"], ["refused"])
+
+
+@pytest.mark.parametrize("spelled", ["(9.81 + dt(dt(h)))/h*x", "x/h*(9.81 + dt(dt(h)))", "x*(9.81/h + dt(dt(h))/h)", "1/h*(9.81 + dt(dt(h)))*x"])
+def test_a_pushing_leg_is_asked_for_however_it_is_spelled(spelled: str) -> None:
+    for sign, kept in ((1, True), (-6, False)):
+        text = stance(rates=f'x = "xd"\nxd = "{spelled}"', define=f'foot = "0.16*v + 0.08*(v - v_cmd)"\nh = "0.6 + {sign}*t**2"',
+                      uncertain="T = [0.20, 0.21]\nloss = [0, 0.01]\nv_cmd = { range = [0.4, 0.5], held = true }")  # fmt: skip
+        assert (proved(text).entries["results"]["set"] is not None) == kept
