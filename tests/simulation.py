@@ -110,7 +110,7 @@ class Walk:
     correction: str = ""
     asked: list[str] = field(default_factory=list)
     gap: str = "0.02"
-    effort: str = "cells = 2000\nseconds = 30"
+    effort: str = "cells = 2000\nseconds = 600"
     gains: dict[str, str] = field(default_factory=dict)
 
     def text(self) -> str:

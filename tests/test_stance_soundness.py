@@ -32,6 +32,7 @@ def num(x: float) -> str:
 
 def pendulum(rng: random.Random, height: str, bend: str, **more: Any) -> Walk:
     """x'' = (g + z'')/z x from the foot, a foot placed to keep the speed and some more for the error."""
+    share = more.pop("share", None) or rng.uniform(0.6, 1.1)
     period = more.pop("period", None) or Quantity(0.38, 0.42)
     uncertain = {"T": period, "loss": Quantity(0.0, round(rng.uniform(0.01, 0.05), 3)), "v_cmd": HELD}
     uncertain |= more.pop("uncertain", {})
@@ -41,7 +42,7 @@ def pendulum(rng: random.Random, height: str, bend: str, **more: Any) -> Walk:
         (-0.3, 1.1), uncertain, {**define, "foot": "0"}, {"x": "-foot", "xd": "(1 - loss)*v"}, rate,
         "D", "xd", "v_cmd", bend, **more,
     )  # fmt: skip
-    return placed(walk, rng.uniform(0.6, 1.1))
+    return placed(walk, share)
 
 
 def middle(walk: Walk) -> Values:
@@ -197,6 +198,20 @@ def bouncing(rng: random.Random, share: float = 0.9) -> Walk:
     )  # fmt: skip
 
 
+def overshooting(rng: random.Random) -> Walk:
+    """A correction that oversteps: what is far too slow leaves the region, so the set is a ball that moves."""
+    walk = pendulum(
+        rng,
+        "0.6",
+        "0",
+        share=rng.uniform(1.5, 1.65),
+        period=Quantity(0.39, 0.4),
+        uncertain={"loss": Quantity(0.02, 0.03)},
+    )
+    walk.state = (-1.5, 0.9)
+    return walk
+
+
 def lasting(rng: random.Random) -> Walk:
     """Steps so long that what is not known grows thirtyfold."""
     return pendulum(rng, "0.6", "0", period=Quantity(1.0, 1.01), uncertain={"loss": Quantity(0.02, 0.021)})
@@ -214,7 +229,7 @@ ASKED: dict[Callable[[random.Random], Walk], list[str]] = {
     constant: [FOOT, PUSH], over_commands: [LONG_LEG], over_states: [FOOT, PUSH], between: [FOOT], waves: [FOOT, FAR],
     timed: [FOOT, LONG_LEG, PUSH], damped: [FAR, FOOT], single: ["throughout(y*y <= 1.3)", PUSH], coupled: [FAR, FOOT],
     gusty: [PUSH], gusts: [FAR, FOOT], upwards: [FOOT, PUSH], downwards: [PUSH], bouncing: [FOOT, FAR], lasting: [FOOT, PUSH],
-    wide: [FAR],
+    wide: [FAR], overshooting: [FOOT, FAR, PUSH],
 }  # fmt: skip
 
 
@@ -389,7 +404,7 @@ def test_no_run_goes_beyond_what_is_proved(kind: Callable[[random.Random], Walk]
 def spoilt(share: float, *asked: str) -> dict[str, Any]:
     """Outcomes where z'' reaches a share of −g for an instant, at one end of the ranges; the map settles in any case."""
     walk = bouncing(random.Random(1), share)
-    walk.asked, walk.effort = list(asked), "cells = 1000\nseconds = 4"
+    walk.asked, walk.effort = list(asked), "cells = 1000\nseconds = 600"
     at = {
         **middle(walk),
         "size": walk.uncertain["size"].high,
@@ -420,7 +435,7 @@ def test_one_gait_that_pulls_spoils_its_cells(commands: tuple[float, float], pul
     rng = random.Random(3)
     found = library(rng, ["0.2", "0.4", "0.6"], ["0.36", "0.44"], "v_cmd", 0.002, 0.31)
     walk = pendulum(rng, **found, period=Quantity(0.36, 0.37), uncertain={"v_cmd": Quantity(*commands, held=True)})
-    walk.asked, walk.effort = ["settles", "gain < 1"], "cells = 1000\nseconds = 8"
+    walk.asked, walk.effort = ["settles", "gain < 1"], "cells = 1000\nseconds = 600"
     at = {**middle(walk), "v_cmd": np.array([commands[1]]), "T": 0.36, "v": 0.4}
     _, seen = walk.landed(at, [0.5])
     assert bool(float(FALL) + walk.value("dt(dt(height))", seen[0])[0] < 0) is pulls

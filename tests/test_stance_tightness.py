@@ -45,7 +45,7 @@ def spaced(axes: Mapping[str, Sequence[str]], gap: str = "1e-3") -> Walk:
     at: Values = dict(zip(axes, (g.ravel() for g in grid), strict=True))
     z = heights(**at)
     region = float(axes["v"][0]), float(axes["v"][-1])
-    ranges = {"T": Quantity(0.4, 0.4)} | {n: Quantity(float(x[0]), float(x[-1])) for n, x in axes.items() if n != "v"}
+    ranges = {n: Quantity(float(x[0]), float(x[-1])) for n, x in axes.items() if n != "v"}
     start = {"x": "-foot", "xd": "(0.98 - 0.005*load)*v" if "load" in axes else "0.98*v"}
     height = {"height": "bezier(t/T, z0, z1, z2, z1, z0)"}
     aim = f"{sum(region) / 2:.3f}"
@@ -57,7 +57,7 @@ def spaced(axes: Mapping[str, Sequence[str]], gap: str = "1e-3") -> Walk:
     gaits = Gaits({f"{n}_node": list(x) for n, x in axes.items()}, columns)
     return Walk(
         region, ranges, define, start, RATE, "T", "xd", aim, SECOND, gaits, {f"{n}_node": n for n in axes}, "shift",
-        ["settles"], gap, "cells = 200000\nseconds = 600", {"kappa": "0.09"},
+        ["settles"], gap, "cells = 200000\nseconds = 600", {"kappa": "0.09", **({} if "T" in axes else {"T": "0.4"})},
     )  # fmt: skip
 
 
@@ -73,7 +73,7 @@ def sampled(walk: Walk, places: Sequence[tuple[str, np.ndarray]]) -> np.ndarray:
     """|N − v| at all combinations of places, an array with an axis each."""
     grid = np.meshgrid(*(x for _, x in places), indexing="ij")
     at = {n: g.ravel() for (n, _), g in zip(places, grid, strict=True)}
-    found = missed(walk, {"T": np.full(grid[0].size, 0.4), **at})
+    found = missed(walk, at)
     return found.reshape(grid[0].shape)
 
 
@@ -108,7 +108,7 @@ def test_residual_falls_with_the_square_of_the_spacing() -> None:
 def test_every_cell_by_itself(spacing: str) -> None:
     """The residual of one cell after another, as the range of next(v) − v over it: as close in each."""
     walk = spaced({"v": lines(0.1, 1.0, float(spacing))})
-    walk.gains = {"kappa": "0"}
+    walk.gains["kappa"] = "0"
     each = list(pairwise(walk.gaits.axes["v_node"] if walk.gaits else []))
     walk.asked = ["value(next(v) - v)"] * len(each)
     over = iter(f"over = {{ v = [{a}, {b}] }}\n" for a, b in each)
