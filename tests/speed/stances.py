@@ -37,7 +37,7 @@ def measured(cells: int) -> dict[str, float]:
         raise ValueError("no stance")
     spans = {p.name: (p.grid[0], p.grid[-1]) for p in o.motion.parameters if p.grid is not None}
     solved = timed("search", lambda: trial(o.graph, o.motion, claim.libraries, spans, ACCURACY))
-    timed("flow", lambda: Writer(claim, None).trajectory(solved.witness))
+    timed("flow", lambda: Writer(claim, None).flows_of(solved.witness))
     certificate = timed("prove", lambda: prove(claim))
     data = certificate.to_bytes()
     verdict = timed("check", lambda: check(data))
