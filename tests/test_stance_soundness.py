@@ -10,6 +10,7 @@ import os
 import random
 from collections.abc import Callable
 from fractions import Fraction
+from functools import cache
 from typing import Any
 
 import numpy as np
@@ -309,8 +310,9 @@ class Simulated:
     def step(self, values: Values, after: Any, command: Any) -> None:
         """The next state within what is proved of it, and of its distance from the next target."""
         room = CLOSE * (1 + np.abs(after))
-        low, high = (float(x) for x in ends(self.values["value(next(v))"]))
-        assert np.all((low - room <= after) & (after <= high + room)), "value"
+        if "value(next(v))" in self.values:
+            low, high = (float(x) for x in ends(self.values["value(next(v))"]))
+            assert np.all((low - room <= after) & (after <= high + room)), "value"
         error, before = (np.abs(x - self.walk.aim(w)) for x, w in ((after, {"v_cmd": command}), (values["v"], values)))
         for name, route in self.results["routes"].items():
             k, e = (float(Fraction(route[q]["upper"])) for q in ("gain", "residual"))
@@ -401,10 +403,22 @@ def test_no_run_goes_beyond_what_is_proved(kind: Callable[[random.Random], Walk]
             assert max(least - low, high - most) <= Fraction(walk.gap) * max(abs(low), abs(high))
 
 
-def spoilt(share: float, *asked: str) -> dict[str, Any]:
+@pytest.mark.parametrize("kind", [timed, overshooting])
+@pytest.mark.parametrize("effort", ["cells = 6", "cells = 1000\nseconds = 0.3"])
+def test_what_is_cut_short_is_no_less_true(kind: Callable[[random.Random], Walk], effort: str) -> None:
+    walk = kind(random.Random(1))
+    walk.asked, walk.effort = ["settles", "value(next(v))", *ASKED[kind]], effort
+    simulated = Simulated(walk, proved(walk.text()), 1)
+    simulated.run()
+    assert simulated.runs
+
+
+@cache
+def spoilt(share: float) -> dict[str, Any]:
     """Outcomes where z'' reaches a share of −g for an instant, at one end of the ranges; the map settles in any case."""
     walk = bouncing(random.Random(1), share)
-    walk.asked, walk.effort = list(asked), "cells = 1000\nseconds = 600"
+    walk.asked = ["settles", "value(next(v))", "bound(v) <= 1", "throughout(abs(x) <= 1)", "gain < 1"]
+    walk.effort = "cells = 1000\nseconds = 4"
     at = {
         **middle(walk),
         "size": walk.uncertain["size"].high,
@@ -418,17 +432,18 @@ def spoilt(share: float, *asked: str) -> dict[str, Any]:
 
 @pytest.mark.parametrize("share", [0.98, 1.01])
 def test_a_leg_that_would_have_to_pull_gets_no_set(share: float) -> None:
-    results = spoilt(share, "settles", "value(next(v))", "bound(v) <= 1", "throughout(abs(x) <= 1)", "gain < 1")
+    results = spoilt(share)
     assert (results["set"] is None) is (share > 1)
     assert {e["verdict"] for e in results["requirements"]} == ({"undecided"} if share > 1 else {"proved"})
     assert all(bool(e["limited_by"]) is (share > 1) for e in results["requirements"])
 
 
 def test_where_a_leg_would_have_to_pull_is_told() -> None:
-    (entry,) = spoilt(1.01, "settles")["requirements"]
-    assert "support" in entry["limited_by"] or "pull" in entry["limited_by"]
+    told = spoilt(1.01)["requirements"][0]["limited_by"]
+    assert "support" in told or "pull" in told
 
 
+@pytest.mark.skipif(TIMES == 1, reason="explaining why nothing is proved takes half a minute")
 @pytest.mark.parametrize("commands, pulls", [((0.25, 0.38), False), ((0.42, 0.55), True)])
 def test_one_gait_that_pulls_spoils_its_cells(commands: tuple[float, float], pulls: bool) -> None:
     """A single node's height profile falls faster than g: no set over its cells, one beside them."""
