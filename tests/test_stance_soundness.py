@@ -418,7 +418,7 @@ def spoilt(share: float) -> dict[str, Any]:
     """Outcomes where z'' reaches a share of −g for an instant, at one end of the ranges; the map settles in any case."""
     walk = bouncing(random.Random(1), share)
     walk.asked = ["settles", "value(next(v))", "bound(v) <= 1", "throughout(abs(x) <= 1)", "gain < 1"]
-    walk.effort = "cells = 1000\nseconds = 4"
+    walk.effort = f"cells = 1000\nseconds = {4 if share > 1 else 600}"
     at = {
         **middle(walk),
         "size": walk.uncertain["size"].high,
