@@ -220,8 +220,9 @@ def test_ctrl_c_keeps_what_is_proved(tmp_path: Path) -> None:
         .replace("d = [-0.01, 0.01]", names)
     )
     process = subprocess.Popen(
-        [*COMMAND, "prove", str(claim)], stdout=subprocess.PIPE, stderr=subprocess.PIPE, text=True
-    )
+        [*COMMAND, "prove", str(claim)], stdout=subprocess.PIPE, stderr=subprocess.PIPE, text=True,
+        preexec_fn=lambda: signal.signal(signal.SIGINT, signal.SIG_DFL),  # tests run in the background ignore it
+    )  # fmt: skip
     time.sleep(4)
     assert process.poll() is None, process.communicate()
     process.send_signal(signal.SIGINT)
