@@ -31,9 +31,13 @@ def certificate(tmp_path_factory: pytest.TempPathFactory) -> Path:
     return target
 
 
-def test_the_demo_proves_everything(tmp_path: Path) -> None:
+def test_the_demo_proves_everything_and_overwrites_nothing(tmp_path: Path) -> None:
+    (tmp_path / "demo").mkdir()
+    mine = tmp_path / "demo" / "pendulum.toml"
+    mine.write_text("mine")
     done = run("demo", "-o", tmp_path / "demo", limit=400)
     assert done.returncode == 0, done.stderr + done.stdout
+    assert mine.read_text() == "mine" and "which you changed" in done.stderr
     assert "by library cell" in done.stdout and "an estimate" in done.stdout
     assert len((EXAMPLES / "strides.csv").read_text().splitlines()) - 1 >= 40
     certificate, claim = tmp_path / "demo" / "striding.cert.json", tmp_path / "demo" / "striding.toml"
@@ -186,10 +190,6 @@ def test_no_work_is_overwritten(tmp_path: Path) -> None:
     before = claim.read_text()
     done = run("prove", claim, "-o", claim)
     assert done.returncode == 2 and "is the claim" in done.stderr and claim.read_text() == before
-    (tmp_path / "demo").mkdir()
-    mine = tmp_path / "demo" / "pendulum.toml"
-    mine.write_text("mine")
-    assert run("demo", "-o", tmp_path / "demo", limit=400).returncode == 0 and mine.read_text() == "mine"
 
 
 def test_a_folder_that_cannot_be_written_is_said(tmp_path: Path) -> None:

@@ -16,7 +16,8 @@ from ultibound.checker.rules import SHAPES
 from ultibound.checker.statement import read_statement
 from ultibound.checker.theorems import THEOREMS
 from ultibound.claim import parse_claim
-from ultibound.claim.obligations import RANGED, Domain, Obligation, Obligations, not_yet
+from ultibound.claim.obligations import RANGED, Domain, Obligation, Obligations
+from ultibound.claim.provable import not_yet
 
 PROOFS = Path(__file__).parents[1] / "proofs"
 PROVABLE = [c for c in CASES if c.accepted and not_yet(parse_claim(c.text, c.settings, c.data, "c")) is None]

@@ -466,8 +466,8 @@ def test_a_flow_spoiled_in_one_place_is_rejected() -> None:
             rejected(spoiled(entries, bend), f"proof line {number + 1}: error")
 
 
-def test_a_leg_that_pulls_has_no_set() -> None:
-    """z'' below -g somewhere: the same lines without that of its support, or with one over another set, prove no set."""
+def test_no_set_without_every_line_of_support() -> None:
+    """What has to stay positive throughout the stance: the same lines without one of these prove no set."""
     entries = sample("stance")
     supports = [n for n, x in enumerate(entries["proof"], 1) if x["proves"].startswith("support")]
     assert len(supports) >= 3

@@ -28,7 +28,8 @@ from .checker.rules import Rejected
 from .checker.theorems import levels, movement, sharpest
 from .claim import Bad, Claim, ClaimError
 from .claim.constants import constant
-from .claim.obligations import RANGED, Domain, Obligations, not_yet, varied
+from .claim.obligations import RANGED, Domain, Obligations
+from .claim.provable import not_yet, varied
 from .contraction.curve import Profile, inward
 from .contraction.orbits import Steering, orbits, slow_path
 from .stance.points import Unsolved
@@ -169,7 +170,11 @@ class Attempt:
             for r, o in zip(claim.requirements, self.results.requirements, strict=True)
             if o.verdict == "undecided"
         }
-        self.curve_may_help = not sharp and bool(waiting & {"settles", "bound", "push", "steps", "radius"})
+        self.curve_may_help = (
+            not sharp
+            and not self.results.unsupported
+            and bool(waiting & {"settles", "bound", "push", "steps", "radius"})
+        )
         self.decided = sum(r.verdict != "undecided" for r in self.results.requirements)
         text = assembled(claim, self.results, remarks)
         self.certificate = sealed(claim, text, self.writer.pruned(self.results.needed), self.ranges.interrupted)
@@ -319,9 +324,14 @@ class Attempt:
     def _split(self, domain: Domain, on: int, moves: list[Proved] | None) -> None:
         """Gain and residual of the split route, where a correction is named: proofs/split.md."""
         if self.claim.correction:
-            slope = self.ranges.enclose(self.obligations.split_slope(domain), on, magnitude=True)
+            try:
+                of_slope, of_kept = self.obligations.split_slope(domain), self.obligations.split_residual(domain)
+            except Bad as why:  # the rates of a stance rest on the correction
+                self.ranges.limits["split"] = str(why)
+                return
+            slope = self.ranges.enclose(of_slope, on, magnitude=True)
             floor = self.gap * self.moved
-            kept = self.ranges.enclose(self.obligations.split_residual(domain), on, magnitude=True, floor=floor)
+            kept = self.ranges.enclose(of_kept, on, magnitude=True, floor=floor)
             self._pair("split", slope, kept, moves)
 
     def _pair(self, route: str, slope: Proved | None, residual: Proved | None, moves: list[Proved] | None) -> None:

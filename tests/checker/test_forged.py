@@ -77,7 +77,7 @@ def test_over_within_the_range_of_what_moves_the_target() -> None:
                  requires=["settles"], rest=CENTRED[1])  # fmt: skip
     results = proved(text).entries["results"]
     assert [r["verdict"] for r in results["requirements"]] == ["proved", "proved"]
-    beyond = proved(text.replace("[0, 0.25]", "[0, 2]").replace("w/10", "w/10 + max(0, v - 1)*9"))
+    beyond = proved(text.replace("[0, 0.25]", "[0, 2]").replace("w/10", "w/10 + max(0, v - 1)*9") + "[effort]\ncells = 500\n")
     assert "known for its own range only" in str(beyond.entries["results"]["requirements"])
 
 
@@ -133,3 +133,20 @@ def test_steps_to_beyond_the_set_take_none() -> None:
     """Everything in the set is within 2 of the target from the start."""
     results = proved(claim("0.5*v", uncertain="", requires=["steps(v, 0.5, 2) <= 3", "steps(v, 0.5, 2) <= 0"])).entries
     assert [r["verdict"] for r in results["results"]["requirements"]] == ["proved", "proved"]
+
+
+def test_what_a_map_adds_and_takes_away_has_to_be_defined() -> None:
+    """v/2 + 1/q − 1/q is nowhere but v/2, and not defined at q = 0: neither the miss nor the error curve hides that."""
+    for q, status in (("[1, 2]", "valid"), ("[-1, 2]", "invalid")):
+        d = Draft(claim("v/2 + 1/q - 1/q", uncertain=f"q = {q}", requires=["settles"]))
+        d.range("target[v]", "0", "0")
+        d.theorem("smaller-ball", "ball", [1], radius="1")
+        d.line("shells", "shells", [2], {"radii": ["1"], "slope": "1/2"})
+        d.range("shell[1]", "-1/2", "1/2", [3], trees=("d", "d"))
+        d.range("line[v]", "-1/2", "1/2", [3], trees=("d",))
+        d.theorem("curve", "curve", [3, 4, 5], gain="1/2", residual="1/2", sharp="1/2")
+        d.theorem("invariant-ball", "invariant", [2, 6])
+        d.theorem("ultimate-bound", "bound[curve]", [7, 6], bound="1")
+        found = check(sealed(d.entries("smaller ball", [("settles", "undecided")])))
+        assert found.status == status, found
+        assert status == "valid" or found.place == "proof line 4"

@@ -11,7 +11,7 @@ from ultibound.bounding.evaluate import Runner
 from ultibound.bounding.intervals import Floats
 from ultibound.claim.graph import Graph
 from ultibound.polynomial import chebyshev
-from ultibound.polynomial.flows import Errors, FlowTable
+from ultibound.polynomial.flows import Branch, Errors, FlowTable
 from ultibound.polynomial.monomials import fit, monomials, sites
 from ultibound.stepmap.symbolic import compiled
 
@@ -46,10 +46,10 @@ def table(parameters: int, pieces: Floats, jump: float = 0.0, error: float = 0.0
 
 
 def ends(
-    t: FlowTable, orders: tuple[int, ...], low: Floats, high: Floats, branch: object = None
+    t: FlowTable, orders: tuple[int, ...], low: Floats, high: Floats, branch: Branch | None = None
 ) -> tuple[Floats, Floats]:
     axes = [(low[:, k], high[:, k]) for k in range(low.shape[1])]
-    return t.read(1, 1, orders, axes, len(low), branch)[0]  # type: ignore[arg-type]
+    return t.read(1, 1, orders, axes, len(low), branch)[0]
 
 
 def partial(orders: tuple[int, ...], x: Floats, h: float = 1e-3) -> Floats:

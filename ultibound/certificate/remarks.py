@@ -63,7 +63,7 @@ class Remarks:
             parts += [f"{n}: {STOPS.get(x, x)}" for n in names if (x := self.search.limits.get(n, ""))]
             if self.search.interrupted:
                 parts.append("interrupted")
-            pursue = self.open(number)
+            pursue = self.open(number) and not results.unsupported
             if r.over and not ranged:
                 parts.append("over these ranges neither lines nor points decide it")
                 value, c = outcome.value, None if r.constant is None else constant(r.constant, self.claim.values)
@@ -90,13 +90,13 @@ class Remarks:
                 parts.append("the radius of the set less the bound is not above the constant")
             elif not parts or pursue:
                 parts.append("the constant lies between what is proved and what is attained")
-        if outcome.verdict != "proved" and not self.search.interrupted and not pursue:
+        if outcome.verdict != "proved" and not (self.search.interrupted or pursue or results.unsupported):
             parts += [self.place(number), self.cost(r)]
         return ("; ".join(p for p in parts if p)[:900] or None), pursue
 
     def support(self, number: int) -> str:
         """What is not shown to stay positive throughout a stance, and where it is lowest."""
-        what = "the duration" if number == 1 else "what a leg keeps positive that only pushes and never pulls"
+        what = "the duration" if number == 1 else "which a leg that never pulls, or a signal with one effect, asks for"
         at = self.told.where(f"support[{number}]")
         return f"support[{number}], {what}, is not shown to be above 0" + (
             f"; it was looked at where {at}" if at else ""

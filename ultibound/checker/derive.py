@@ -212,6 +212,9 @@ class Derivation:
             root = names.expression(r.expression) if r.expression is not None else names.of(f"next({r.state})")
         phase = self.terms.put("variable", (), PHASE) if r.kind == "throughout" else None
         root = self.landed(names, root, phase)
+        freed = set(r.over) - set(self.statement.uncertain) - set(self.stance.states)
+        if freed & self.supporting(names):
+            raise Unprovable(f"{r.text!r}: the stance is not shown to last where a name is set free")
         if r.by is not None and self.stirred(root, r.by):
             raise Unprovable(f"{r.by}: a signal's effect within the stance follows it, and may take any course")
         met = self.terms.variables(root)
@@ -274,11 +277,11 @@ class Derivation:
                 bound[self.state] = self.kept(x, domain)
         return bound, given
 
-    def supporting(self) -> set[str]:
+    def supporting(self, names: Names) -> set[str]:
         """Names of variables on which rests what has to stay positive throughout a stance."""
         if self.motion is None:
             return set()
-        names, phase = self.names(), self.terms.put("variable", (), PHASE)
+        phase = self.terms.put("variable", (), PHASE)
         roots = [supported(names, self.motion, k, phase) for k in self.motion.positive]
         return {n for k in roots for n in self.terms.variables(k)}
 
@@ -302,7 +305,7 @@ class Derivation:
         quantity = self.stance.states.get(name) or self.statement.uncertain[name]
         if quantity.within:
             raise Unprovable(f"{name}: a signal within the stance keeps its range")
-        if name in self.supporting():
+        if name in self.supporting(self.names()):
             low, high = self.range(quantity)[1] if quantity.values is None else (Fraction(1), Fraction(0))
             if (name == self.state and domain.ball) or not (low <= wanted[0] and wanted[1] <= high):
                 raise Unprovable(f"{name}: the stance is not shown to last beyond the range of the claim")

@@ -9,7 +9,7 @@ from typing import Any
 from .derive import RANGED
 from .grammar import constant
 from .rules import Line, Proof, Rejected
-from .theorems import PAIRS, levels, movement
+from .theorems import PAIRS, levels, magnitude, movement
 
 MOST_STEPS = 20_000
 LONG, GRAIN = 2000, 2**160  # bits of a denominator beyond which levels are rounded up, and to what
@@ -277,10 +277,7 @@ class Results:
         line = self.one("range", f"growth[{self.state}]")
         if line is None or line.domain != self.domain or self.push is None or self.push.lower is None:
             return Outcome("undecided", None)
-        growth = max(line.concludes["upper"], -line.concludes["lower"])
-        if growth <= 0:
-            return Outcome("undecided", None)
-        room = self.push.lower / growth
+        room = self.push.lower / magnitude(line)  # a change right before touchdown has grown by 1
         return verdict(self.whole and less(c[1], room), False, Span(room, None))
 
     def stepped(self, number: int, r: Any, c: tuple[Fraction, Fraction]) -> Outcome:

@@ -64,13 +64,19 @@ class Terms:
     def difference(self, a: int, b: int, deep: int = 0) -> int:
         """a − b without the terms and factors both have: proofs/split.md (2)."""
         net: dict[int, int] = {}
+        met: list[set[int]] = []
         for side, root in ((1, a), (-1, b)):
+            met.append({k for _, k in self.addends(root)})
             for sign, k in self.addends(root):
                 net[k] = net.get(k, 0) + side * sign
         left = [k for k, n in net.items() for _ in range(n)]
         right = [k for k, n in net.items() for _ in range(-n)]
         few = deep < DEEPEST and len(left) * len(right) < MOST_PAIRS
-        total = self.put("number", (), Fraction(0))
+        none = self.put("number", (), Fraction(0))
+        total = none
+        for k in sorted(met[0] ^ met[1]):  # what one side alone adds and takes away has to be defined all the same
+            if not net[k]:
+                total = self.put("add", (total, self.put("mul", (none, k))))
         for k in left:
             for m in right if few else ():
                 common = set(self.all[k][1]) & set(self.all[m][1])

@@ -72,13 +72,17 @@ class Graph:
 
     def difference(self, a: int, b: int, depth: int = 0) -> int:
         """a − b, an identity wherever both are defined: common terms cancel, common factors are taken out."""
-        net = self._sum(a)
-        for gate, count in self._sum(b).items():
+        net, other = self._sum(a), self._sum(b)
+        alone = sorted(set(net) ^ set(other))
+        for gate, count in other.items():
             net[gate] = net.get(gate, 0) - count
         plus = [k for k, n in net.items() if n > 0 for _ in range(n)]
         minus = [k for k, n in net.items() if n < 0 for _ in range(-n)]
         few = depth < MAX_CANCELLED and len(plus) * len(minus) < MAX_PAIRS
         total = self.number(0)
+        for gate in alone:  # added and taken away within one side: nothing, where it is defined
+            if not net[gate]:
+                total = self.add("add", total, self.add("mul", self.number(0), gate))
         for gate in plus:
             partner = next((m for m in minus if few and self._shared(gate, m)), None)
             if partner is not None:

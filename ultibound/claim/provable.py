@@ -1,0 +1,96 @@
+"""What of a well-formed claim can be proved, and the claim that a requirement with ranges of its own is about."""
+
+from __future__ import annotations
+
+from dataclasses import replace
+from fractions import Fraction
+
+from .constants import constant
+from .errors import Bad
+from .model import Claim, Quantity, Requirement
+from .obligations import Domain, Obligations
+
+
+def varied(claim: Claim, number: int) -> Claim:
+    """The claim with what `over` of a requirement says for its ranges (proofs/obligations.md)."""
+    r = claim.requirements[number - 1]
+    stance, uncertain = claim.stances[0], dict(claim.uncertain)
+    states = {n: replace(q, range=r.over[n]) if n in r.over else q for n, q in stance.states.items()}
+    for name, given in r.over.items():
+        if name in uncertain:
+            uncertain[name] = replace(uncertain[name], range=given, values=None)
+        elif name not in states:  # a constant or gain: unknown now, the same at every step
+            uncertain[name] = Quantity(name, given, held=True)
+    return replace(
+        claim,
+        constants={n: e for n, e in claim.constants.items() if n not in r.over},
+        gains={n: e for n, e in claim.gains.items() if n not in r.over},
+        uncertain=uncertain,
+        stances=(replace(stance, states=states),),
+        requirements=tuple(replace(x, over={}) if x is r else x for x in claim.requirements),
+    )
+
+
+def not_yet(claim: Claim) -> str | None:
+    """What of a well-formed claim cannot be proved yet, in one line; None if all of it can."""
+    stance = claim.stances[0]
+    if len(claim.stances) > 1 or stance.name:
+        return "stance: claims with stances cannot be proved yet; state one map that covers every step"
+    if stance.dynamics is not None:
+        try:
+            Obligations(claim)
+        except Bad as problem:
+            return str(problem)
+    if len(stance.states) > 1:
+        return f"state: {len(stance.states)} states; only claims of one state can be proved yet"
+    if claim.horizon != 1:
+        return f"horizon: {claim.horizon}; only one step at a time can be proved yet; remove the key"
+    if claim.route == "sector":
+        return "route: sector cannot be proved yet; use slope, split, curve or best"
+    if claim.route == "split" and not claim.correction:
+        return "route: split tells a correction apart; name it in `correction`, or use another route"
+    if any(set(constant(w, claim.values)) != {Fraction(1)} for w in claim.weights.values()):
+        return "metric.weights: only the weight 1 can be used with a single state yet; remove the table"
+    for number, r in enumerate(claim.requirements, 1):
+        if r.during and stance.dynamics is not None:
+            try:
+                o = Obligations(claim)
+                o.growth(Domain("region", Fraction(0), (Fraction(0), Fraction(0))))
+            except Bad as problem:
+                return f"require[{number}]: {problem}"
+        folded, ends = _folded(claim, r)
+        unfollowed = sorted(({r.by or ""} & folded) | (set(r.over) & (folded | ends)))
+        if unfollowed:
+            why = "it also sets an exponent, the end of a range or the bound asked for, which is taken at its value"
+            return f"require[{number}]: {unfollowed[0]} cannot be followed: {why}; use --set for each value"
+    return None
+
+
+def _folded(claim: Claim, r: Requirement) -> tuple[set[str], set[str]]:
+    """Constants and gains that exponents rest on, and those that ranges rest on, directly or through others."""
+    fixed = {**claim.constants, **claim.gains}
+    s = claim.stances[0]
+    spans = [*s.states.values(), *claim.uncertain.values()]
+    ranges = [e for q in spans if q.range is not None for e in (q.range.lower, q.range.upper)]
+    ranges += [e for q in spans for e in (*(q.values or ()), q.change) if e is not None]
+    ranges += [e for given in r.over.values() for e in (given.lower, given.upper)]
+    ranges += [e for e in (r.constant, r.start, r.end) if e is not None] + list(claim.weights.values())
+    texts = [*fixed.values(), *s.define.values(), *s.next.values(), *s.target.values(), *ranges]
+    texts += [e for lib in claim.libraries for e in lib.at]
+    if s.dynamics is not None:
+        texts += [*s.dynamics.start.values(), *s.dynamics.rate.values()]
+        texts += [s.dynamics.duration] if s.dynamics.duration is not None else []
+    texts += [e for e in (r.expression, r.left, r.right) if e is not None]
+    exponents = {name for e in texts for n in e.nodes if n.op == "power" for name in (n.name or "").split()}
+    ends = {name for e in ranges for name in e.names()}
+
+    def below(names: set[str]) -> set[str]:
+        found, waiting = set(names), list(names)
+        while waiting:
+            name = waiting.pop()
+            fresh = set(fixed[name].names()) - found if name in fixed else set()
+            found |= fresh
+            waiting += fresh
+        return found
+
+    return below(exponents), below(ends)
