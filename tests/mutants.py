@@ -262,7 +262,6 @@ EQUIVALENT: dict[Key, str] = {
     ("numerals", "placed", "power < 0", "power <= 0"): "a power of 0 has been written out by then",
     ("statement", "read_statement", "len(stances) > 1", "len(stances) >= 1"):
         "a claim with one stance is never longer than the limit of a claim's text, which is below this one",
-    ("results", "Results.pushed_within", "growth <= 0", "growth < 0"): "at touchdown itself a change is what it was: growth is never below 1",
     ("models", "Models.spans", "(e[k] - n) // 2", "-(-(e[k] - n) // 2)"): "n runs in steps of 2 from e[k]",
     ("models", "Models.spans", "e[k] - n", "e[k] + n"): "a binomial of the other half of its symmetric row",
     ("models", "Models.spans", "p + share * q", "p - share * q"): "all coefficients are turned alike, and magnitudes are taken",
