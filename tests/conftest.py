@@ -5,9 +5,20 @@ from __future__ import annotations
 from fractions import Fraction
 from typing import Any
 
+import pytest
+
 from ultibound.certificate.certificate import Certificate
 from ultibound.claim import parse_claim
 from ultibound.prove import prove
+
+
+def pytest_terminal_summary(terminalreporter: pytest.TerminalReporter) -> None:
+    """Tables that tests recorded, in whichever process they ran."""
+    for outcome in ("passed", "failed"):
+        for report in terminalreporter.getreports(outcome):
+            for table in [text for name, text in report.user_properties if name == "table"]:
+                terminalreporter.section(report.nodeid)
+                terminalreporter.write_line(table)
 
 
 def proved(text: str, settings: dict[str, str] | None = None, data: dict[str, str] | None = None) -> Certificate:

@@ -1,13 +1,14 @@
 """Every comparison, sign and rounding direction of the checker is held to by some check (tests/mutants.py).
 
 A seeded sample each time; with ULTIBOUND_LONG=1 all mutants of these modules, and a table of what became of them
-(`ULTIBOUND_LONG=1 python -m pytest -s tests/test_mutants.py`).
+(`ULTIBOUND_LONG=1 python -m pytest tests/test_mutants.py`).
 """
 
 from __future__ import annotations
 
 import os
 import random
+from collections.abc import Callable
 
 import pytest
 
@@ -78,9 +79,13 @@ def test_a_sample_is_noticed(copies: Copies, found: dict[str, list[Mutant]], bat
 
 
 @pytest.mark.skipif(not LONG, reason="some minutes: ULTIBOUND_LONG=1")
-def test_all_are_noticed(copies: Copies, found: dict[str, list[Mutant]], batteries: dict[str, Battery]) -> None:
+def test_all_are_noticed(
+    copies: Copies,
+    found: dict[str, list[Mutant]],
+    batteries: dict[str, Battery],
+    record_property: Callable[[str, str], None],
+) -> None:
     tallies = [campaign(copies, batteries[module], module, several) for module, several in found.items()]
-    print(f"\n{table(tallies)}")
-    for key in [key for t in tallies for key in t.equivalents]:
-        print("equivalent:", *key, "--", EQUIVALENT[key])
+    explained = [" ".join(("equivalent:", *key, "--", EQUIVALENT[key])) for t in tallies for key in t.equivalents]
+    record_property("table", "\n".join([table(tallies), *explained]))
     assert not any(t.survivors or t.stale for t in tallies), table(tallies)

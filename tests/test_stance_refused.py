@@ -12,7 +12,7 @@ from ultibound.checker.statement import read_statement
 from ultibound.claim import ClaimError
 
 SWING = "v_cmd = { range = [0.4, 0.5], held = true }\ngust = { range = [-1, 1], within = true }\n"
-STILL = 'x = 0\nxd = 0'
+STILL = "x = 0\nxd = 0"
 
 
 def verdicts(text: str) -> list[str]:
@@ -101,7 +101,10 @@ def test_a_duration_that_is_set_free() -> None:
     assert verdicts(text + over("long", -1, 1)) == ["undecided"]
 
 
-@pytest.mark.parametrize("spelled", ["(9.81 + dt(dt(h)))/h*x", "x/h*(9.81 + dt(dt(h)))", "x*(9.81/h + dt(dt(h))/h)", "1/h*(9.81 + dt(dt(h)))*x"])
+@pytest.mark.parametrize(
+    "spelled",
+    ["(9.81 + dt(dt(h)))/h*x", "x/h*(9.81 + dt(dt(h)))", "x*(9.81/h + dt(dt(h))/h)", "1/h*(9.81 + dt(dt(h)))*x"],
+)
 def test_a_pushing_leg_is_asked_for_however_it_is_spelled(spelled: str) -> None:
     for sign, kept in ((1, True), (-6, False)):
         text = stance(rates=f'x = "xd"\nxd = "{spelled}"', define=f'foot = "0.16*v + 0.08*(v - v_cmd)"\nh = "0.6 + {sign}*t**2"',

@@ -8,7 +8,7 @@ from __future__ import annotations
 
 import time
 from fractions import Fraction
-from math import prod
+from math import floor, prod
 
 from .bounding.defined import undefined_point
 from .bounding.evaluate import to_float
@@ -46,7 +46,7 @@ SPARE = 0.01  # share of a smaller ball's radius left free
 MOST_ROUGH = 300  # cells of a library over which no curve is followed unless one is asked for
 ROUGH, QUICK, FEW, MOST = 3e-2, 8, 1, 60  # gap, leaves a shell and shells of a rough curve; shells of a sharp one
 TRIED = 4  # orbits, the furthest first
-REACH = 10_000  # steps of the longest path
+REACH, ENOUGH = 10_000, 200  # steps of the longest path, and of one that is longer than asked for
 
 
 Known = dict[int, tuple[Trial, Flows]]  # by requirement with ranges of its own, or 0
@@ -423,7 +423,9 @@ class Attempt:
         for r in self.claim.requirements:
             if r.kind == "steps" and not r.over and r.start is not None and r.end is not None:
                 start, end = constant(r.start, values)[0], constant(r.end, values)[1]
-                course = slow_path(self._steering(), start, to_float(end), REACH, target)
+                asked = REACH if r.constant is None else floor(constant(r.constant, values)[1]) + 1
+                most = min(REACH, max(asked, ENOUGH))
+                course = slow_path(self._steering(), start, to_float(end), most, target)
                 if course is not None:
                     self.writer.path(course.start[0], course.held, course.steps, invariant)
 

@@ -77,7 +77,9 @@ def test_over_within_the_range_of_what_moves_the_target() -> None:
                  requires=["settles"], rest=CENTRED[1])  # fmt: skip
     results = proved(text).entries["results"]
     assert [r["verdict"] for r in results["requirements"]] == ["proved", "proved"]
-    beyond = proved(text.replace("[0, 0.25]", "[0, 2]").replace("w/10", "w/10 + max(0, v - 1)*9") + "[effort]\ncells = 500\n")
+    beyond = proved(
+        text.replace("[0, 0.25]", "[0, 2]").replace("w/10", "w/10 + max(0, v - 1)*9") + "[effort]\ncells = 500\n"
+    )
     assert "known for its own range only" in str(beyond.entries["results"]["requirements"])
 
 

@@ -1210,7 +1210,7 @@ def stances_at_equality() -> None:
     entries = d.entries("region", ASKED)
     accept("a stance that stands still", entries)
     for n, (that, verdict) in enumerate(ASKED):
-        for other in {"proved", "refuted"} - {verdict}:
+        for other in sorted({"proved", "refuted"} - {verdict}):
             reject(f"stance: {that} {other}", but(entries, f"results requirements {n} verdict", other), "results", f"[{n + 1}].verdict: {other} is claimed, {verdict} was derived")
     for number, key, value, reason in ((4, "upper", "3/4", "image"), (6, "lower", "1", "support[1]"), (6, "upper", "1", "support[1]"), (7, "lower", "1/2", "slope[v,v]"), (11, "upper", "1", "growth[v]"), (11, "lower", "1", "growth[v]")):
         beyond = str(Q(value) + (Q("1" + STEP) if key == "lower" else -Q("1" + STEP)))

@@ -33,6 +33,16 @@ class Course:
     steps: tuple[Values, ...]
 
 
+@dataclass(frozen=True, slots=True)
+class Run:
+    """Where a trajectory starts, under which held values, and where it is steered."""
+
+    start: float
+    held: Values
+    aim: float
+    sign: int
+
+
 class Steering:
     """The map at points, with all choices of held and fresh values at hand."""
 
@@ -44,64 +54,71 @@ class Steering:
         met = {v.name: v for v in (*image.variables, *target.variables)}
         self.fresh = combinations([v for n, v in met.items() if n != state and n not in held], rng)
         self.held = combinations([v for n, v in met.items() if n in held], rng)[:MOST_HELD]
+        self.rows = {n: np.array([to_float(w[n]) for w in self.fresh]) for n in self.fresh[0]}
 
-    def step(self, x: Floats, held: list[Values], fresh: list[Values]) -> Floats:
-        """Next states: a row each of x, its held and fresh values."""
-        at = np.empty((len(x), len(self.names)))
-        for j, n in enumerate(self.names):
-            at[:, j] = (
-                x if n == self.state else [to_float(h[n] if n in h else f[n]) for h, f in zip(held, fresh, strict=True)]
-            )
-        return self.runner(at, at, gradient=False).low
+    def step(self, x: Floats, held: list[Values], fresh: dict[str, Floats]) -> Floats:
+        """Next states (runs, choices): of each run, with its held values, by every choice of fresh values."""
+        choices = [np.array([[to_float(h[n])] for h in held]) if n in held[0] else fresh.get(n) for n in self.names]
+        columns = [x[:, None] if n == self.state else c for n, c in zip(self.names, choices, strict=True)]
+        width = len(next(iter(fresh.values()))) if fresh else 1
+        at = np.stack([np.broadcast_to(c, (len(x), width)).ravel() for c in columns if c is not None], axis=1)
+        return self.runner(at, at, gradient=False).low.reshape(len(x), width)
 
     def aim(self, held: Values) -> float:
         at = np.array([[to_float(held[n]) for n in self.target.variables]]).reshape(1, len(self.target.variables))
         return float(self.target(at, at, gradient=False).low[0])
 
-    def steered(
-        self, start: float, held: Values, aim: float, sign: int, steps: int, wanted: float = -1.0
-    ) -> tuple[list[float], list[int]]:
-        """States and the fresh choices that lead furthest: up (1), down (-1) or away from the target (0).
+    def steered(self, runs: list[Run], steps: int, wanted: float = -1.0) -> list[tuple[list[float], list[int]]]:
+        """States of each run and the fresh choices that lead furthest up (1), down (-1) or away from the target (0).
 
-        Stops within `wanted` of the target: from there on it is for the proof to say.
+        A run stops within `wanted` of its target: from there on it is for the proof to say.
         """
-        x, states, chosen = start, [start], []
+        x, found = np.array([r.start for r in runs]), [([r.start], list[int]()) for r in runs]
+        aim, sign = np.array([r.aim for r in runs]), np.array([[r.sign] for r in runs])
+        going = np.arange(len(runs))
         for _ in range(steps):
-            after = self.step(np.full(len(self.fresh), x), [held] * len(self.fresh), self.fresh)
-            score = sign * after if sign else np.abs(after - aim)
-            k = int(np.argmax(np.where(np.isfinite(score), score, -np.inf)))
-            x = float(after[k])
-            if not np.isfinite(x) or abs(x - aim) <= wanted:
+            after = self.step(x[going], [runs[i].held for i in going], self.rows)
+            with np.errstate(invalid="ignore"):
+                score = np.where(sign[going] == 0, np.abs(after - aim[going, None]), sign[going] * after)
+            best = np.argmax(np.where(np.isfinite(score), score, -np.inf), axis=1)
+            x[going] = after[np.arange(len(going)), best]
+            keep = np.isfinite(x[going]) & (np.abs(x[going] - aim[going]) > wanted)
+            for i, k in zip(going[keep], best[keep], strict=True):
+                found[i][0].append(float(x[i]))
+                found[i][1].append(int(k))
+            going = going[keep]
+            if not len(going):
                 break
-            states.append(x)
-            chosen.append(k)
-        return states, chosen
+        return found
 
 
 def orbits(steering: Steering, starts: list[float]) -> Iterator[tuple[float, Course]]:
     """Periodic orbits and their estimated distance from the target, one a way of steering."""
-    for values in steering.held:
-        aim = steering.aim(values)
-        for start in starts:
-            for sign in (1, -1, 0):
-                states, chosen = steering.steered(aim + start, values, aim, sign, STEPS)
-                for p in range(1, LONGEST_PERIOD + 1):
-                    if len(chosen) == STEPS and chosen[-p:] == chosen[-2 * p : -p]:
-                        found = _closed(steering, states[-1], values, chosen[-p:], aim)
-                        if found is not None:
-                            yield found
-                        break
+    runs = [
+        Run(aim + start, held, aim, sign)
+        for held, aim in ((h, steering.aim(h)) for h in steering.held)
+        for start in starts
+        for sign in (1, -1, 0)
+    ]
+    for run, (states, chosen) in zip(runs, steering.steered(runs, STEPS), strict=True):
+        for p in range(1, LONGEST_PERIOD + 1):
+            if len(chosen) == STEPS and chosen[-p:] == chosen[-2 * p : -p]:
+                found = _closed(steering, states[-1], run.held, chosen[-p:], run.aim)
+                if found is not None:
+                    yield found
+                break
 
 
 def _closed(steering: Steering, x: float, held: Values, chosen: list[int], aim: float) -> tuple[float, Course] | None:
     """The orbit that repeating the choices leads to."""
     steps = tuple(steering.fresh[k] for k in chosen)
+    rows = [{n: c[k : k + 1] for n, c in steering.rows.items()} for k in chosen]
     far = 0.0
     for _ in range(SETTLE // len(steps)):
         before, far = x, 0.0
-        for w in steps:
+        for w in rows:
             far = max(far, abs(x - aim))
-            x = float(steering.step(np.array([x]), [held], [w])[0])
+            x = float(steering.step(np.array([x]), [held], w)[0, 0])
         if abs(x - before) <= 4e-16 * max(abs(x), 1e-300):
             break
     else:
@@ -114,14 +131,16 @@ def slow_path(steering: Steering, start: Fraction, wanted: float, most: int, tar
 
     `target` is its exact value where it has a single one; else the start is a little nearer than allowed.
     """
-    best: Course | None = None
-    for values in steering.held:
-        aim = steering.aim(values)
-        for side in (1, -1):
-            for sign in (1, -1, 0):
-                states, chosen = steering.steered(aim + side * float(start), values, aim, sign, most, wanted)
-                far = [n for n, x in enumerate(states) if n > 0 and abs(x - aim) > wanted]
-                if far and (best is None or far[-1] > len(best.steps)):
-                    x = target + side * start if target is not None else Fraction(aim + side * float(start) * NEARER)
-                    best = Course((x, x), values, tuple(steering.fresh[k] for k in chosen[: far[-1]]))
-    return best
+    runs = [
+        Run(aim + side * float(start), held, aim, sign)
+        for held, aim in ((h, steering.aim(h)) for h in steering.held)
+        for side in (1, -1)
+        for sign in (1, -1, 0)
+    ]
+    found = steering.steered(runs, most, wanted)
+    run, (_, chosen) = max(zip(runs, found, strict=True), key=lambda each: len(each[1][1]))
+    if not chosen:
+        return None
+    side = 1 if run.start > run.aim else -1
+    x = target + side * start if target is not None else Fraction(run.aim + side * float(start) * NEARER)
+    return Course((x, x), run.held, tuple(steering.fresh[k] for k in chosen))
