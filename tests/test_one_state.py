@@ -5,6 +5,7 @@ from __future__ import annotations
 import math
 import time
 from fractions import Fraction
+from itertools import pairwise
 from typing import Any
 
 import pytest
@@ -16,6 +17,7 @@ from ultibound.checker.ranges import Evaluator
 from ultibound.checker.reals import Scaled, Undefined
 from ultibound.checker.statement import read_statement
 from ultibound.claim import ClaimError, parse_claim
+from ultibound.contraction.curve import inward
 from ultibound.prove import Attempt
 
 ROUTES = ("slope", "split", "curve")
@@ -309,3 +311,10 @@ def test_a_weight_is_not_set_free() -> None:
         proved(text)
     with pytest.raises(Unprovable, match="also sets"):
         varied(read_statement(text, {}, {}), 1)
+
+
+@pytest.mark.parametrize("less, shells", [("1e-3", 61), ("1e-11", 61), ("1e-13", 1)])
+def test_radii_rise_however_little_is_gained(less: str, shells: int) -> None:
+    """What is led inward by less than the written digits show ends the shells."""
+    radii = inward(Fraction(1), lambda rho: float(rho) * (1 - float(less)), 1e-14, 60)
+    assert len(radii) == shells and all(a < b for a, b in pairwise((Fraction(0), *radii)))

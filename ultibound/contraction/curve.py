@@ -56,7 +56,8 @@ def inward(outermost: Fraction, level: Callable[[Fraction], float], gap: float, 
     found = [outermost]
     while len(found) <= most:
         after = level(found[-1]) * (1 + gap)
-        if not 0 < after < float(found[-1]) * (1 - gap / 8):
+        within = Fraction(f"{after:.12g}") if 0 < after < float(found[-1]) * (1 - gap / 8) else found[-1]
+        if not 0 < within < found[-1]:  # not led further in, or by less than is written down
             break
-        found.append(Fraction(f"{after:.9g}"))
+        found.append(within)
     return tuple(reversed(found))
