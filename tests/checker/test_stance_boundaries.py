@@ -1268,6 +1268,29 @@ def stances_at_equality() -> None:
     unbounded = d.entries("region", [("push(v, during) >= 0.1", "undecided")])
     accept("growth without a bound", unbounded)
     reject("growth without a bound, proved", but(unbounded, "results requirements 0 verdict", "proved"), "results", "[1].verdict: proved is claimed")
+    # an orbit at 1/2: a push of more than 1/2 right before touchdown leads out
+    swung = {"rule": "orbit", "proves": "orbit", "uses": [5, 1], "witness": {"bits": 24, "held": {}, "start": ["1/2", "1/2"], "steps": [{"w": "1/4"}]},
+             "concludes": {"distance": "1/2", "highest": "1/2", "lowest": "1/2"}}  # fmt: skip
+    asked_ = [("push(v, during) >= 1/2", "undecided"), ("push(v, during) > 1/2", "refuted"), (f"push(v, during) >= 1/2 + 1{STEP}", "refuted")]
+    d = stood([that for that, _ in asked_])
+    d.proof.append(swung)
+    d.point("target[v]", {}, "0", "0")
+    led = d.entries("region", asked_)
+    accept("pushed out of an orbit", led)
+    for n, (_, verdict) in enumerate(asked_):
+        for other in sorted({"proved", "refuted", "undecided"} - {verdict, "undecided"}):
+            reject(f"pushed out of an orbit, {n} {other}", but(led, f"results requirements {n} verdict", other), "results", f"[{n + 1}].verdict: {other} is claimed")
+    for shrink, growth in ((False, True), (True, True), (False, False)):
+        d = stood([asked_[1][0]], top="shrink = true\n" if shrink else "")
+        d.proof.append(swung)
+        d.point("target[v]", {}, "0", "0")
+        if not growth:
+            del d.proof[10]
+        verdict = "undecided" if shrink else "refuted"
+        entries = d.entries("region", [(asked_[1][0], verdict)])
+        accept(f"pushed out, shrink {shrink}, growth {growth}", entries)
+        if shrink:
+            reject("pushed out of a smaller set", but(entries, "results requirements 0 verdict", "refuted"), "results", "[1].verdict: refuted is claimed")
 
 
 def stances_that_are_off() -> None:

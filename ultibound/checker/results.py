@@ -274,11 +274,13 @@ class Results:
 
     def pushed_within(self, r: Any, c: tuple[Fraction, Fraction]) -> Outcome:
         """What is left of the radius, over the growth of a change until touchdown: proofs/stance.md (6)."""
-        line = self.one("range", f"growth[{self.state}]")
-        if line is None or line.domain != self.domain or self.push is None or self.push.lower is None:
-            return Outcome("undecided", None)
-        room = self.push.lower / magnitude(line)  # a change right before touchdown has grown by 1
-        return verdict(self.whole and less(c[1], room), False, Span(room, None))
+        line, least = self.one("range", f"growth[{self.state}]"), None
+        if line is not None and line.domain == self.domain and self.push is not None and self.push.lower is not None:
+            least = self.push.lower / magnitude(line)
+        # a change right before touchdown grows no more: what would lead an orbit out does so within the stance too
+        beyond = not self.any and opposed(r.relation, Span(self.room, None), c)
+        span = None if least is None and self.room is None else Span(least, self.room)
+        return verdict(self.whole and less(c[1], least), beyond, span)
 
     def stepped(self, number: int, r: Any, c: tuple[Fraction, Fraction]) -> Outcome:
         """proofs/settling.md (1): steps after which the error stays within `to`, from any start within `from`."""

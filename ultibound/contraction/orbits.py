@@ -20,6 +20,7 @@ STEPS = 30
 LONGEST_PERIOD = 4
 SETTLE = 400
 MOST_HELD = 27
+STILL = 1e-14  # relative change a round at which an orbit is found: brackets are wider
 NEARER = 1 - 1e-12
 Values = dict[str, Fraction]
 
@@ -119,7 +120,7 @@ def _closed(steering: Steering, x: float, held: Values, chosen: list[int], aim: 
         for w in rows:
             far = max(far, abs(x - aim))
             x = float(steering.step(np.array([x]), [held], w)[0, 0])
-        if abs(x - before) <= 4e-16 * max(abs(x), 1e-300):
+        if abs(x - before) <= STILL * max(abs(x), 1e-300):
             break
     else:
         return None
