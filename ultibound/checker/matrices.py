@@ -82,7 +82,7 @@ def metric(kind: str, rows: Matrix, inverse: Matrix, states: int) -> Metric:
     if len(inverse) != states or any(len(row) != m for row in inverse):
         raise Rejected("metric: the inverse has one row for each state, one column for each row")
     if kind != "polytope" and m != states:
-        raise Rejected(f"metric: a matrix of a {kind} is square")
+        raise Rejected(f"metric: the {kind} has a square matrix")
     (v, v_unit), (left, left_unit) = whole(rows), whole(inverse)
     if kind == "box" and not all(x > 0 if i == j else x == 0 for i, row in enumerate(v) for j, x in enumerate(row)):
         raise Rejected("metric: a box has positive weights, and nothing beside them")
