@@ -352,6 +352,15 @@ def measured_from_a_start(m: Any) -> None:
         and 3 <= m.norm_over(one, spread, Q(1)) <= 3 + Q(4, 10**9)
     )
     assert m.norm_over(one, leaf(m, matrix([3], [4])), relative=Q(0)) == 5
+    # irrational, and small; what is measured is accepted
+    for scale in (Q(1), Q(1, 7), Q(1, 10**15)):
+        vector = leaf(m, matrix([scale], [scale]))
+        found = m.norm_over(one, vector)
+        assert m.norm_at_most(one, vector, found) and not m.norm_at_most(one, vector, found * (1 - Q(1, 10**21)))
+        shear = leaf(m, matrix([scale, scale], [0, scale]))
+        for relative in (Q(1, 10**9), Q(1, 10**18)):
+            found = m.norm_over(one, shear, relative=relative)
+            assert m.norm_at_most(one, shear, found) and not m.norm_at_most(one, shear, found * (1 - relative))
     # corner by corner: an early one is larger, a late one is
     for sign in (1, -1):
         moved = leaf(m, diagonal(2, 2), [diagonal(sign, sign)])
