@@ -56,7 +56,9 @@ class Metric:
 
     def length(self, most: Sequence[Fraction]) -> Fraction:
         """Upper bound of ‖e‖ over all |e_s| <= most[s]: it is largest at a corner, proofs/matrix.md (1d)."""
-        columns, unit = whole([[row[s] * x for row in self.rows] for s, x in enumerate(most)])
+        columns, unit = whole(
+            [[row[s] * x for row in self.rows] for s, x in zip(range(len(self.inverse)), most, strict=True)]
+        )
         images = corners(columns[0], columns[1:])  # of opposite corners one will do
         if self.kind == "ellipsoid":
             return root(Fraction(max(sum(map(mul, x, x)) for x in images), unit * unit))[1]
