@@ -275,6 +275,9 @@ EQUIVALENT: dict[Key, str] = {
     ("flows", "divisions", "lines[0] < g < lines[-1]", "lines[0] <= g < lines[-1]"): "the first cut is among the cuts",
     ("flows", "divisions", "lines[0] < g < lines[-1]", "lines[0] < g <= lines[-1]"): "the last cut is among the cuts",
     ("flows", "divisions", "set(inside) <= set(lines)", "set(inside) < set(lines)"): "the ends are no lines inside",
+    ("matrices", "definite", "(pivot * x - first * y) // before", "-(-(pivot * x - first * y) // before)"):
+        "every division is exact: what is divided is a minor times the pivot before (proofs/matrix.md (4))",
+    ("matrices", "whole", "unit // x.denominator", "-(-unit // x.denominator)"): "a common multiple of all denominators",
     ("tables", "read_library", "set(axes) <= set(header)", "set(axes) < set(header)"):
         "where the axes are all columns there are, the other half of the condition refuses",
 }  # fmt: skip

@@ -12,7 +12,7 @@ from collections.abc import Callable
 
 import pytest
 
-from tests.checker import test_boundaries, test_reading, test_stance_boundaries
+from tests.checker import test_boundaries, test_matrices, test_reading, test_stance_boundaries
 from tests.mutants import EQUIVALENT, Battery, Copies, Mutant, campaign, mutants, table
 
 LONG = os.environ.get("ULTIBOUND_LONG") == "1"
@@ -33,6 +33,7 @@ PROOFS = (
     "names",
 )
 STANCES = ("calculus", "motion", "models", "rates", "flows")
+NORMS = ("matrices",)
 READING = ("grammar", "numerals", "statement", "tables", "scope", "command")
 SAMPLE, SEED = 32, 20260101
 MOST_EQUIVALENT = 0.05
@@ -45,16 +46,19 @@ def copies() -> Copies:
 
 @pytest.fixture(scope="module")
 def found(copies: Copies) -> dict[str, list[Mutant]]:
-    return {m: mutants(m, copies.source[m]) for m in PROOFS + STANCES + READING}
+    return {m: mutants(m, copies.source[m]) for m in PROOFS + STANCES + NORMS + READING}
 
 
 @pytest.fixture(scope="module")
 def batteries(copies: Copies) -> dict[str, Battery]:
     """Of each module: what notices nothing about the unchanged copy."""
     reading, stances = Battery(test_reading.CASES, 400), Battery(test_stance_boundaries.CASES)
+    norms = Battery(test_matrices.CASES)
     proofs = Battery(test_boundaries.CASES | {f"stance: {n}": q for n, q in test_stance_boundaries.CASES.items()})
     assert proofs.noticed(copies, {}) is None and reading.noticed(copies, {}) is None
-    return dict.fromkeys(PROOFS, proofs) | dict.fromkeys(STANCES, stances) | dict.fromkeys(READING, reading)
+    assert norms.noticed(copies, {}) is None
+    of_norms, of_reading = dict.fromkeys(NORMS, norms), dict.fromkeys(READING, reading)
+    return dict.fromkeys(PROOFS, proofs) | dict.fromkeys(STANCES, stances) | of_norms | of_reading
 
 
 def test_each_equivalent_stands_in_the_source(found: dict[str, list[Mutant]]) -> None:
