@@ -55,6 +55,14 @@ def test_imports_only_from_above(path: Path) -> None:
             assert ORDER.index(other) < ORDER.index(mine), f"{path} imports {name} from below"
 
 
+@pytest.mark.parametrize("path", MODULES, ids=lambda p: str(p.relative_to(PACKAGE)))
+def test_solvers_load_only_where_used(path: Path) -> None:
+    for node in ast.parse(path.read_text(encoding="utf-8")).body:
+        names = [a.name for a in node.names] if isinstance(node, ast.Import) else []
+        names += [node.module or ""] if isinstance(node, ast.ImportFrom) else []
+        assert not {n.split(".")[0] for n in names} & {"cvxpy", "scipy"}, f"{path} loads a solver at once"
+
+
 def test_the_checker_needs_the_standard_library_alone() -> None:
     for path in (PACKAGE / "checker").rglob("*.py"):
         for name in imported(path):
