@@ -22,8 +22,8 @@ from .checker import Verdict, check
 from .checker.derive import Derivation
 from .checker.derive import varied as statement_varied
 from .checker.flows import Flows
+from .checker.outcomes import results_of
 from .checker.reals import Undefined
-from .checker.results import Results
 from .checker.rules import Rejected
 from .checker.theorems import levels, movement, sharpest
 from .claim import Bad, Claim, ClaimError
@@ -78,12 +78,17 @@ def prove(claim: Claim, watch: Watch | None = None) -> Certificate:
 
 def _proved(claim: Claim, watch: Watch) -> Certificate:
     """The certificate of a claim that can be used: tried at smaller gaps while that may decide a requirement."""
+    kind = Attempt
+    if len(claim.stances[0].states) > 1:
+        from .prove_several import SeveralAttempt
+
+        kind = SeveralAttempt
     gap = to_float(claim.gap)
     until = time.monotonic() + to_float(claim.seconds)
     sharp = claim.route == "curve" or any(r.kind == "sharp_bound" for r in claim.requirements)
     known: Known = {}
     while True:
-        attempt = _best(Attempt(claim, gap, until, watch, sharp, known=known))
+        attempt = _best(kind(claim, gap, until, watch, sharp, known=known))
         if attempt.curve_may_help and not attempt.ranges.interrupted and time.monotonic() < until:
             sharp = True
             continue
@@ -136,6 +141,8 @@ class Attempt:
     `known`: flows of the stance that were proved in an earlier pass.
     """
 
+    writes: type[Writer] = Writer
+
     def __init__(
         self,
         claim: Claim,
@@ -151,7 +158,7 @@ class Attempt:
         self.claim, self.gap, self.until, self.watch = claim, gap, until, watch
         self.sharp, self.within = sharp, within
         self.variant, self.derivation, self.known = variant, derivation, {} if known is None else known
-        self.obligations, self.writer = Obligations(claim), Writer(claim, derivation)
+        self.obligations, self.writer = Obligations(claim), self.writes(claim, derivation)
         self.ranges = Encloser(claim, self.obligations.graph, self.writer, gap, until, watch)
         self.near_region = False
         self.smaller: Fraction | None = None
@@ -160,10 +167,8 @@ class Attempt:
         self._prove()
         for number in () if variant else apart(claim):
             self._over(number)
-        self.results = Results(self.writer.proof)
-        state = Search(self.ranges.limits, self.ranges.interrupted, self.near_region)
-        told = Explained(self.obligations, self.ranges, self.results, self.moved)
-        remarks = Remarks(claim, self.obligations, self.results, state, told).all()
+        self.results = results_of(self.writer.proof)
+        remarks = self._remarks()
         self.pursue = any(p for _, p in remarks)
         waiting = {
             r.kind
@@ -172,12 +177,19 @@ class Attempt:
         }
         self.curve_may_help = (
             not sharp
+            and len(self.obligations.states) == 1
             and not self.results.unsupported
             and bool(waiting & {"settles", "bound", "push", "steps", "radius"})
         )
         self.decided = sum(r.verdict != "undecided" for r in self.results.requirements)
         text = assembled(claim, self.results, remarks)
         self.certificate = sealed(claim, text, self.writer.pruned(self.results.needed), self.ranges.interrupted)
+
+    def _remarks(self) -> list[tuple[str | None, bool]]:
+        """What limits each requirement, and whether a smaller gap may decide it."""
+        state = Search(self.ranges.limits, self.ranges.interrupted, self.near_region)
+        told = Explained(self.obligations, self.ranges, self.results, self.moved)
+        return Remarks(self.claim, self.obligations, self.results, state, told).all()
 
     def _prove(self) -> None:
         """Lines for the certified set, the routes on it, orbits in it, and the requirements."""
@@ -265,18 +277,20 @@ class Attempt:
         """A requirement over ranges of its own: a proof of the same kind, whose lines are taken in."""
         derivation = Derivation(statement_varied(self.writer.derivation.statement, number))
         claim = varied(self.claim, number)
-        own = _best(Attempt(claim, self.gap, self.until, self.watch, self.sharp, None, number, derivation, self.known))
+        own = _best(
+            type(self)(claim, self.gap, self.until, self.watch, self.sharp, None, number, derivation, self.known)
+        )
         self.ranges.interrupted |= own.ranges.interrupted
         self.writer.adopt(own.writer, number, own.results.needed)
 
-    def _target(self) -> Proved:
-        s, claim = self.obligations.state, self.claim
-        target = self.ranges.enclose(self.obligations.target(), None, gap=min(self.gap, TARGET_GAP))
+    def _target(self, state: str = "") -> Proved:
+        s, claim = state or self.obligations.state, self.claim
+        target = self.ranges.enclose(self.obligations.target(s), None, gap=min(self.gap, TARGET_GAP))
         if target is None:
             raise ClaimError.of(
                 claim.place, f"target.{s}", "no finite range of the target can be shown; state it in a simpler form"
             )
-        self._target_inside(self.writer.derivation.region()[0])
+        self._target_inside(s, self.writer.derivation.region(s)[0])
         return target
 
     def _ball(self, target: Proved) -> int:
@@ -429,10 +443,10 @@ class Attempt:
                 if course is not None:
                     self.writer.path(course.start[0], course.held, course.steps, invariant)
 
-    def _target_inside(self, region: tuple[Fraction, Fraction]) -> None:
-        s = self.obligations.state
+    def _target_inside(self, s: str, region: tuple[Fraction, Fraction]) -> None:
         for n, line in self.writer.proof.lines.items():
-            if line.rule == "point" and (line.concludes["lower"] > region[1] or line.concludes["upper"] < region[0]):
+            met = (line.rule, line.proves) == ("point", f"target[{s}]")
+            if met and (line.concludes["lower"] > region[1] or line.concludes["upper"] < region[0]):
                 at = self.writer.raw[n - 1]["witness"]["at"]
                 where = ", ".join(f"{k} = {float(Fraction(v)):.6g}" for k, v in at.items() if not v.startswith("#"))
                 value = float(line.concludes["lower"])

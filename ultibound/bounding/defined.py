@@ -23,8 +23,7 @@ def undefined_point(claim: Claim) -> tuple[str, str] | None:
     An estimate: points are judged in floating point with a margin, so a borderline case is left to the proof.
     """
     o = Obligations(claim)
-    s = o.state
-    roots = [(f"next.{s}", o.image()), (f"target.{s}", o.target())]
+    roots = [x for s in o.states for x in ((f"next.{s}", o.image(s)), (f"target.{s}", o.target(s)))]
     roots += [("dynamics.rate", x) for x in o.coefficients()]
     region = Domain("region", Fraction(0), (Fraction(0), Fraction(0)))
     for number, r in enumerate(claim.requirements, 1):

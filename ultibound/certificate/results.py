@@ -15,11 +15,10 @@ DIGITS = 20
 
 def assembled(claim: Claim, results: Results, remarks: list[tuple[str | None, bool]]) -> dict[str, Any]:
     """The entry as certificate-format states it; remarks say what limits each requirement."""
-    s = results.state
     radius = written(results.radius) if results.settled else None
-    inside = {"kind": results.kind, "centre": {s: written(results.centre)}, "radius": radius}
+    centre = {s: written(x) for s, x in results.targets().items()}
+    inside = {"kind": results.kind, "centre": centre, "radius": radius}
     routes = {n: paired(r.gain, r.residual, r.bound) for n, r in results.routes.items()}
-    sharp, push = written(results.sharp), written(results.push)
     requirements, bands = [], []
     for r, outcome, (remark, _) in zip(claim.requirements, results.requirements, remarks, strict=True):
         entry: dict[str, Any] = {
@@ -34,11 +33,11 @@ def assembled(claim: Claim, results: Results, remarks: list[tuple[str | None, bo
         "set": inside if results.settled else None,
         "route": results.reported,
         **paired(results.gain, results.residual, results.bound),
-        "sharp_bound": sharp,
+        "sharp_bound": written(results.sharp),
         "radius": radius,
-        "states": {s: {"bound": written(results.best), "sharp_bound": sharp, "radius": radius, "push": push}},
+        "states": {s: {n: written(x) for n, x in each.items()} for s, each in results.by_state().items()},
         "routes": routes,
-        "metric": {"kind": "box", "weights": {s: "1"}},
+        "metric": results.norm(),
         "sensitivities": bands,
         "gain_intervals": [],
         "requirements": requirements,

@@ -17,7 +17,7 @@ from .derive import Derivation
 from .document import Unreadable, digest, read
 from .grammar import Refused
 from .holding import hold
-from .results import Results
+from .outcomes import results_of
 from .rules import Proof, Rejected
 from .statement import read_statement
 
@@ -63,7 +63,7 @@ def check(data: bytes, watch: Callable[[int, int], None] = lambda done, total: N
             watch(number - 1, len(entries["proof"]))
             proof.add(raw)
         place = "results"
-        results = Results(proof)
+        results = results_of(proof)
         hold(results, entries["results"])
         place = "proof"
         used(proof, results.needed)

@@ -10,6 +10,7 @@ from math import prod
 
 from .calculus import Unprovable
 from .grammar import constant
+from .matrices import Metric
 from .model import Quantity, Range, Requirement, Statement
 from .motion import PHASE, Motion, copy, grown, landed, motion, supported
 from .names import Names, mentioned
@@ -17,6 +18,7 @@ from .ranges import Ends
 from .terms import Terms
 
 MOST_CELLS = 1_000_000
+MOST_STATES = 6
 RANGED = ("value", "sensitivity", "always", "throughout")  # requirements that a range proves
 
 
@@ -42,7 +44,8 @@ class Meaning:
 class Domain:
     """The region, or the ball of `radius` about a target known to lie in `target`, or larger by up to `beyond`.
 
-    `radii`, `slope`: shells about the target, a line above the error curve.
+    `radii`, `slope`: shells about the target, a line above the error curve. Of several states: the `targets` of all,
+    and the metric the ball is one of.
     """
 
     ball: bool
@@ -51,6 +54,8 @@ class Domain:
     radii: tuple[Fraction, ...] = ()
     slope: Fraction = Fraction(0)
     beyond: Fraction = Fraction(0)
+    targets: tuple[Ends, ...] = ()
+    metric: Metric | None = None
 
     @property
     def outer(self) -> Fraction:
@@ -89,23 +94,26 @@ def varied(statement: Statement, number: int) -> Statement:
 
 
 class Derivation:
-    """Obligations of a one-state claim in closed form."""
+    """Obligations of a claim about one stance."""
 
     def __init__(self, statement: Statement) -> None:
         stance = statement.stances[0]
-        if len(statement.stances) > 1 or stance.name or len(stance.states) != 1:
-            raise Unprovable("only claims of one state and one stance can be checked")
+        if len(statement.stances) > 1 or stance.name:
+            raise Unprovable("only claims of one stance can be checked")
         if statement.horizon != 1 or statement.route == "sector":
             raise Unprovable("only the routes slope, split and curve over one step can be checked")
-        if any(set(constant(w, statement.values)) != {Fraction(1)} for w in statement.weights.values()):
+        several = len(stance.states) > 1
+        if several and (statement.route not in ("best", "slope") or len(stance.states) > MOST_STATES):
+            raise Unprovable(f"only the route slope can be checked for two to {MOST_STATES} states")
+        if not several and any(set(constant(w, statement.values)) != {Fraction(1)} for w in statement.weights.values()):
             raise Unprovable("only the weight 1 can be checked for a single state")
         self.statement, self.stance, self.terms = statement, stance, Terms()
-        (self.state,) = stance.states
+        self.states = tuple(stance.states)
+        self.state = self.states[0]  # of a claim of one state, that one
         self.motion: Motion | None = None
         if stance.dynamics is not None:
             self.motion = motion(Names(self.terms, statement, {}, ""))
-        target = self.names().of(f"target({self.state})")
-        self.fixed = not self.terms.variables(target)
+        self.fixed = {s for s in self.states if not self.terms.variables(self.names().of(f"target({s})"))}
 
     def names(self, bound: dict[str, int] | None = None, cut: str = "") -> Names:
         return Names(self.terms, self.statement, bound or {}, cut, self.landed)
@@ -115,25 +123,42 @@ class Derivation:
 
     def meaning(self, name: str, domain: Domain | None) -> Meaning:
         """The obligation of that name; the set is needed where the state runs through it."""
-        s = self.state
-        if name == f"target[{s}]":
+        found = re.fullmatch(r"(target|image|target-miss|target-slope|slope)\[([^,]+)(?:,([^,]+))?\]", name)
+        kind, s, by = found.groups() if found else ("", self.state, None)
+        if s not in self.states:
+            raise Unprovable(f"{name} is no obligation of this claim")
+        if by is None and kind == "target":
             return self.over(self.names().of(f"target({s})"))
-        if name == f"image[{s}]":
+        if by is None and kind == "image":
             return self.over(self.names().of(f"next({s})"))
-        if name == f"target-miss[{s}]":
-            target = self.names().of(f"target({s})")
-            step = self.names({s: target}).of(f"next({s})")
-            return self.over(self.terms.difference(step, target))
-        if name in {f"target-slope[{s},{h}]": h for h in self.moving()}:
-            held = name.removeprefix(f"target-slope[{s},").removesuffix("]")
-            held_ = {h: self.statement.uncertain[h] for h in self.moving()}
-            given = {h: (self.occurs(q), self.surely(q)) for h, q in held_.items()}
-            return self.over(self.names(cut=held).of(f"target({s})"), held, given)
+        if by is None and kind == "target-miss":
+            targets = {x: self.names().of(f"target({x})") for x in self.states}
+            return self.over(self.terms.difference(self.names(targets).of(f"next({s})"), targets[s]))
+        if kind == "target-slope" and by in self.moving(s):
+            held = {h: self.statement.uncertain[h] for h in self.moving(s)}
+            given = {h: (self.occurs(q), self.surely(q)) for h, q in held.items()}
+            return self.over(self.names(cut=by).of(f"target({s})"), by, given)
         if domain is None:
             raise Unprovable(f"{name} needs a line that gives its set")
-        if name == f"slope[{s},{s}]":
+        if kind == "slope" and by in self.states:
             bound, given = self.through(domain, {})
-            return self.over(self.names(bound, s).of(f"next({s})"), s, given, True)
+            return self.over(self.names(bound, by).of(f"next({s})"), by, given, True)
+        if len(self.states) == 1 and (one := self.of_one(name, domain)) is not None:
+            return one
+        support = re.fullmatch(r"support\[([1-9][0-9]{0,3})\]", name)
+        if support and self.motion is not None and int(support[1]) <= len(self.motion.positive):
+            bound, given = self.through(domain, {})
+            phase = self.terms.put("variable", (), PHASE)
+            root = supported(self.names(bound), self.motion, self.motion.positive[int(support[1]) - 1], phase)
+            return self.over(root, "", given, True)
+        number = re.fullmatch(r"require\[([1-9][0-9]{0,3})\]", name)
+        if number and int(number[1]) <= len(self.statement.requirements):
+            return self.required(self.statement.requirements[int(number[1]) - 1], domain)
+        raise Unprovable(f"{name} is no obligation of this claim")
+
+    def of_one(self, name: str, domain: Domain) -> Meaning | None:
+        """Obligations of routes and pushes that are known for a single state only."""
+        s = self.state
         if name in (f"split-slope[{s},{s}]", f"split-residual[{s}]") and self.statement.correction:
             return self.split(domain, name.startswith("split-slope"))
         shell = re.fullmatch(r"shell\[([1-9][0-9]{0,3})\]", name)
@@ -141,20 +166,11 @@ class Derivation:
             return self.shell(domain, int(shell[1]))
         if name == f"line[{s}]" and domain.radii:
             return self.line(domain)
-        support = re.fullmatch(r"support\[([1-9][0-9]{0,3})\]", name)
-        if support and self.motion is not None and int(support[1]) <= len(self.motion.positive):
-            bound, given = self.through(domain, {})
-            phase = self.terms.put("variable", (), PHASE)
-            root = supported(self.names(bound), self.motion, self.motion.positive[int(support[1]) - 1], phase)
-            return self.over(root, "", given, True)
         if name == f"growth[{s}]" and self.motion is not None:
             bound, given = self.through(domain, {})
             phase = self.terms.put("variable", (), PHASE)
             return self.over(grown(self.names(bound), self.motion, s, phase), "", given, True)
-        number = re.fullmatch(r"require\[([1-9][0-9]{0,3})\]", name)
-        if number and int(number[1]) <= len(self.statement.requirements):
-            return self.required(self.statement.requirements[int(number[1]) - 1], domain)
-        raise Unprovable(f"{name} is no obligation of this claim")
+        return None
 
     def split(self, domain: Domain, slope: bool) -> Meaning:
         """proofs/split.md: the slope of x + F − N, or N − x + F(x*) − N(x*), N without the correction."""
@@ -218,7 +234,7 @@ class Derivation:
         if r.by is not None and self.stirred(root, r.by):
             raise Unprovable(f"{r.by}: a signal's effect within the stance follows it, and may take any course")
         met = self.terms.variables(root)
-        on_set = self.state not in r.over and (self.state in met or f"error({self.state})" in met)
+        on_set = any(s not in r.over and (s in met or f"error({s})" in met) for s in self.states)
         return self.over(root, r.by or "", given, on_set)
 
     def folded(self, r: Requirement) -> tuple[set[str], set[str]]:
@@ -245,9 +261,9 @@ class Derivation:
                 waiting += more
         return exponents, ends
 
-    def moving(self) -> list[str]:
+    def moving(self, state: str = "") -> list[str]:
         """Held quantities that may change from step to step and that the target depends on."""
-        met = self.terms.variables(self.names().of(f"target({self.state})"))
+        met = self.terms.variables(self.names().of(f"target({state or self.state})"))
         return [h for h in met if self.statement.uncertain[h].change is not None]
 
     def through(self, domain: Domain, over: dict[str, Range]) -> tuple[dict[str, int], dict[str, tuple[Ends, Ends]]]:
@@ -259,23 +275,28 @@ class Derivation:
             given[name] = self.ends(r)
             if name in self.statement.uncertain or name in self.stance.states:
                 self.kept_by_over(name, given[name][0], domain)
-        if domain.ball and self.state not in over:
-            # suprema over the outer ball, points in the inner one: proofs/invariant-set.md (4)
-            (low, high), (least, most) = domain.target, self.region()[0]
-            inner, outer = domain.radius, domain.outer
-            if self.fixed:
-                reach = max(least, low - outer), min(most, high + outer)
-                given[self.state] = reach, (high - inner, low + inner)
-            else:  # the ball moves with its centre: proofs/invariant-set.md
-                error = f"error({self.state})"
-                given[error] = (-outer, outer), (-inner, inner)
-                held = {
-                    n: k for n, k in bound.items() if n in self.statement.uncertain
-                }  # `over` does not reach the set
-                centre = self.names(held).of(f"target({self.state})")
-                x = self.terms.put("add", (centre, self.terms.put("variable", (), error)))
-                bound[self.state] = self.kept(x, domain)
+        if domain.ball:
+            for i, s in enumerate(self.states):
+                if s not in over:
+                    self.about(domain, i, bound, given)
         return bound, given
+
+    def about(self, domain: Domain, i: int, bound: dict[str, int], given: dict[str, tuple[Ends, Ends]]) -> None:
+        """A state through a ball: suprema over the outer one, points in the inner one (invariant-set.md (4))."""
+        s, target = self.states[i], domain.targets[i] if domain.targets else domain.target
+        (low, high), (least, most) = target, self.region(s)[0]
+        wide = Fraction(1) if domain.metric is None else domain.metric.support(i)
+        inner, outer = domain.radius * wide, domain.outer * wide
+        if s in self.fixed:
+            reach = max(least, low - outer), min(most, high + outer)
+            given[s] = reach, (high - inner, low + inner)
+        else:  # the ball moves with its centre: proofs/invariant-set.md
+            error = f"error({s})"
+            given[error] = (-outer, outer), (-inner, inner)
+            held = {n: k for n, k in bound.items() if n in self.statement.uncertain}  # `over` does not reach the set
+            centre = self.names(held).of(f"target({s})")
+            x = self.terms.put("add", (centre, self.terms.put("variable", (), error)))
+            bound[s] = self.kept(x, domain, s)
 
     def supporting(self, names: Names) -> set[str]:
         """Names of variables on which rests what has to stay positive throughout a stance."""
@@ -298,7 +319,8 @@ class Derivation:
 
     def loose(self) -> bool:
         """Whether slopes by the state are those at constant signals only."""
-        return self.stirred(self.names(cut=self.state).of(f"next({self.state})"), self.state)
+        pairs = [(s, x) for s in self.states for x in self.states]
+        return any(self.stirred(self.names(cut=x).of(f"next({s})"), x) for s, x in pairs)
 
     def kept_by_over(self, name: str, wanted: Ends, domain: Domain) -> None:
         """Refuses ranges that would lead a ball's centre or a stance where the claim does not, and those of signals."""
@@ -307,18 +329,18 @@ class Derivation:
             raise Unprovable(f"{name}: a signal within the stance keeps its range")
         if name in self.supporting(self.names()):
             low, high = self.range(quantity)[1] if quantity.values is None else (Fraction(1), Fraction(0))
-            if (name == self.state and domain.ball) or not (low <= wanted[0] and wanted[1] <= high):
+            if (name in self.states and domain.ball) or not (low <= wanted[0] and wanted[1] <= high):
                 raise Unprovable(f"{name}: the stance is not shown to last beyond the range of the claim")
-        if domain.ball and name in self.terms.variables(self.names().of(f"target({self.state})")):
+        if domain.ball and any(name in self.terms.variables(self.names().of(f"target({s})")) for s in self.states):
             low, high = self.range(quantity)[1] if quantity.values is None else (Fraction(1), Fraction(0))
             if not (low <= wanted[0] and wanted[1] <= high):
                 raise Unprovable(f"{name}: the set moves with it, and is known for its own range only")
 
-    def kept(self, x: int, domain: Domain) -> int:
+    def kept(self, x: int, domain: Domain, s: str = "") -> int:
         """A state clipped to the region, wherever the set may reach beyond it as it is written."""
         if domain.ball and not domain.beyond:
             return x
-        low, high = (self.terms.put("number", (), q) for q in self.region()[0])
+        low, high = (self.terms.put("number", (), q) for q in self.region(s)[0])
         return self.terms.put("min", (self.terms.put("max", (x, low)), high))
 
     def over(
@@ -380,8 +402,8 @@ class Derivation:
             raise Unprovable(f"{quantity.name} has no range")
         return self.ends(quantity.range)
 
-    def region(self) -> tuple[Ends, Ends]:
-        return self.range(self.stance.states[self.state])
+    def region(self, state: str = "") -> tuple[Ends, Ends]:
+        return self.range(self.stance.states[state or self.state])
 
     def occurs(self, quantity: Quantity) -> Ends:
         if quantity.values is None:

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+from collections.abc import Iterator
 from fractions import Fraction
 from itertools import product
 from math import prod
@@ -116,10 +117,19 @@ def face(evaluator: Evaluator, box: Box, slopes: dict[int, Interval], side: int)
 
 def walk(evaluator: Evaluator, tops: list[tuple[Ends, ...]], trees: list[str]) -> tuple[Interval, int]:
     """Hull over the leaves of one splitting tree a top cell, and the number of leaves (proofs/splitting.md)."""
-    if len(trees) != len(tops) or not tops:
-        raise Undefined(f"{len(trees)} trees for {len(tops)} cells")
     hull: Interval = None
     leaves = 0
+    for box, form in boxes(tops, trees):
+        part = enclose(evaluator, box, form)
+        hull = part if hull is None else (min(hull[0], part[0]), max(hull[1], part[1]))
+        leaves += 1
+    return hull, leaves
+
+
+def boxes(tops: list[tuple[Ends, ...]], trees: list[str]) -> Iterator[tuple[Box, str]]:
+    """The leaves of one splitting tree a top cell, each with what is written at it; together they cover all cells."""
+    if len(trees) != len(tops) or not tops:
+        raise Undefined(f"{len(trees)} trees for {len(tops)} cells")
     for top, tree in zip(tops, trees, strict=True):
         waiting = [(list(top), 0)]
         for token in tree.split(" "):
@@ -135,9 +145,6 @@ def walk(evaluator: Evaluator, tops: list[tuple[Ends, ...]], trees: list[str]) -
                 halves[1][int(token)] = (low + high) / 2, high
                 waiting += [(halves[1], depth + 1), (halves[0], depth + 1)]
                 continue
-            part = enclose(evaluator, box, token)
-            hull = part if hull is None else (min(hull[0], part[0]), max(hull[1], part[1]))
-            leaves += 1
+            yield box, token
         if waiting:
             raise Undefined("a tree ends before all of its box is covered")
-    return hull, leaves

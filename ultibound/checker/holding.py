@@ -14,30 +14,31 @@ PAIR = ("gain", "residual", "bound")
 
 def hold(results: Results, claimed: Any) -> None:
     """Raises Rejected where `results` of a certificate says more than, or other than, what was derived."""
-    s, radius = results.state, results.radius if results.settled else None
+    radius = results.radius if results.settled else None
     whole = "set route gain residual bound sharp_bound radius states routes metric sensitivities gain_intervals"
     keys(claimed, "results", f"{whole} requirements")
+    targets, found = results.targets(), results.by_state()
     if claimed["set"] is not None or results.settled:
         keys(claimed["set"], "results.set", "kind centre radius")
         same(claimed["set"]["kind"], results.kind, "results.set.kind")
-        keys(claimed["set"]["centre"], "results.set.centre", s)
-        span(claimed["set"]["centre"][s], results.centre, "results.set.centre")
+        keys(claimed["set"]["centre"], "results.set.centre", " ".join(targets))
+        for s, centre in targets.items():
+            span(claimed["set"]["centre"][s], centre, "results.set.centre")
         span(claimed["set"]["radius"], radius, "results.set.radius", inward=True)
     same(claimed["route"], results.reported, "results.route")
     span(claimed["radius"], radius, "results.radius", inward=True)
     span(claimed["sharp_bound"], results.sharp, "results.sharp_bound")
     pair({x: claimed[x] for x in PAIR}, Route(results.gain, results.residual, results.bound), "results")
-    keys(claimed["states"], "results.states", s)
-    state, at = claimed["states"][s], f"results.states.{s}"
-    keys(state, at, "bound sharp_bound radius push")
-    span(state["bound"], results.best, f"{at}.bound")
-    span(state["sharp_bound"], results.sharp, f"{at}.sharp_bound")
-    span(state["radius"], radius, f"{at}.radius", inward=True)
-    span(state["push"], results.push, f"{at}.push", inward=True)
+    keys(claimed["states"], "results.states", " ".join(found))
+    for s, figures in found.items():
+        keys(claimed["states"][s], f"results.states.{s}", " ".join(figures))
+        for name, figure in figures.items():
+            inward = name in ("radius", "push")
+            span(claimed["states"][s][name], figure, f"results.states.{s}.{name}", inward=inward)
     keys(claimed["routes"], "results.routes", " ".join(results.routes))
     for name, route in results.routes.items():
         pair(claimed["routes"][name], route, f"results.routes.{name}")
-    same(claimed["metric"], {"kind": "box", "weights": {s: "1"}}, "results.metric")
+    same(claimed["metric"], results.norm(), "results.metric")
     same(claimed["gain_intervals"], [], "results.gain_intervals")
     bands(results, claimed["sensitivities"])
     if not isinstance(claimed["requirements"], list) or len(claimed["requirements"]) != len(results.requirements):

@@ -80,6 +80,18 @@ class Results:
         numbered = enumerate(self.statement.requirements, 1)
         self.requirements = [self.required(n, r) for n, r in numbered if not variant or n == variant]
 
+    def by_state(self) -> dict[str, dict[str, Span | None]]:
+        """Bound, sharp bound, radius and push of each state, as `results.states` has them."""
+        radius = self.radius if self.settled else None
+        return {self.state: {"bound": self.best, "sharp_bound": self.sharp, "radius": radius, "push": self.push}}
+
+    def targets(self) -> dict[str, Span]:
+        return {self.state: self.centre}
+
+    def norm(self) -> dict[str, Any]:
+        """The metric, as `results.metric` has it."""
+        return {"kind": "box", "weights": {self.state: "1"}}
+
     def set_found(self, invariant: Line | None, ball: Line) -> tuple[str | None, bool]:
         """Its kind, and whether requirements may refer to it: proofs/invariant-set.md (4)."""
         if invariant is None:
@@ -245,7 +257,7 @@ class Results:
         """A requirement over ranges of its own: a set, routes and orbits of its own lines."""
         if not any(x.variant == number for x in self.proof.lines.values()):
             return Outcome("undecided", None)
-        own = Results(self.proof, number)
+        own = type(self)(self.proof, number)
         self.needed |= own.needed
         return own.requirements[0]
 

@@ -13,14 +13,16 @@ from .courses import arithmetic, orbit, path, place
 from .derive import Derivation, varied
 from .flows import trajectory
 from .forms import walk
+from .jacobians import inside
 from .numerals import Rejected, quantity
 from .ranges import Evaluator
 from .reals import Undefined
+from .several import concluded
 from .theorems import THEOREMS, Line, parted, shells
 
 __all__ = ["Line", "Proof", "Rejected", "place", "quantity"]
 
-SHAPES = {
+SHAPES: dict[str, tuple[tuple[str, ...], tuple[str, ...] | None]] = {
     "range": (("bits", "trees"), ("lower", "upper")),
     "point": (("at", "bits"), ("lower", "upper")),
     "largest-ball": ((), ("outer", "radius")),
@@ -35,6 +37,12 @@ SHAPES = {
     "orbit": (("bits", "held", "start", "steps"), ("distance", "highest", "lowest")),
     "path": (("bits", "held", "start", "steps"), ("distance", "from", "steps")),
     "ultimate-bound": ((), ("bound",)),
+    "metric": (("inverse", "kind", "rows"), ()),
+    "matrix": (("bits", "trees"), ("norm",)),
+    "entries": (("bits", "inverse", "rows", "trees"), None),  # one an entry
+    "stretch": (("at", "bits", "direction"), ("lower",)),
+    "componentwise": (("b", "p"), None),  # one a state
+    "invariant-rows": ((), ()),
 }
 
 
@@ -63,8 +71,8 @@ class Proof:
         if not isinstance(uses, list) or any(type(n) is not int or not 0 < n < number for n in uses):
             raise Rejected("uses: earlier line numbers only")
         for part, keys in zip(("witness", "concludes"), SHAPES[rule], strict=True):
-            if not isinstance(raw[part], dict) or set(raw[part]) != set(keys):
-                raise Rejected(f"{part}: the keys of {rule} are {', '.join(keys) or 'none'}")
+            if not isinstance(raw[part], dict) or (keys is not None and set(raw[part]) != set(keys)):
+                raise Rejected(f"{part}: the keys of {rule} are {', '.join(keys or ()) or 'none'}")
         claimed = {key: quantity(text, f"concludes.{key}") for key, text in raw["concludes"].items()}
         used = [self.lines[n] for n in uses]
         witness = raw["witness"]
@@ -79,6 +87,9 @@ class Proof:
                     raise Rejected("a flow rests on no other line, and on dynamics")
                 flows = trajectory(d.terms, d.motion, d.statement.libraries, witness, claimed["error"])
                 line = Line(rule, proves, (), claimed, flows=flows)
+            elif (about := concluded(d, rule, proves, used, witness, claimed)) is not None:
+                line = replace(about, uses=tuple(uses))
+                self.leaves += about.leaves
             elif rule in ("range", "point"):
                 line = self.enclosed(d, rule, proves, tuple(uses), used, witness, claimed)
             elif rule == "shells":
@@ -126,7 +137,9 @@ class Proof:
             hull, leaves = walk(evaluator, list(product(*(v.cells for v in meaning.variables))), trees)
             self.leaves += leaves
         else:
-            hull = evaluator.wanted(evaluator.run(place(meaning, witness["at"]), False, touching=True))
+            box = place(meaning, witness["at"])
+            inside(d, domain, dict(zip(names, box, strict=True)))
+            hull = evaluator.wanted(evaluator.run(box, False, touching=True))
         low, high = precision.ends(hull)
         if not (claimed["lower"] <= low and high <= claimed["upper"]):
             raise Rejected(f"{proves}: the range shown is wider than what is concluded")

@@ -7,6 +7,7 @@ from fractions import Fraction
 
 from .derive import Derivation, Domain
 from .flows import Flows
+from .matrices import Matrix, Metric
 from .numerals import Rejected
 
 Quantities = dict[str, Fraction]
@@ -24,6 +25,9 @@ class Line:
     on_set: bool = False
     variant: int = 0  # the requirement whose `over` the line is about, or 0
     flows: Flows | None = None
+    metric: Metric | None = None
+    basis: tuple[Matrix, Matrix] | None = None  # of entries: rows and their inverse
+    leaves: int = 0
 
 
 def parted(used: list[Line]) -> tuple[list[Line], Flows | None]:

@@ -1,11 +1,11 @@
-"""What has to be proved for a one-state claim: one list of names and meanings (proofs/obligations.md).
+"""What has to be proved for a claim: one list of names and meanings (proofs/obligations.md).
 
 The checker derives the same list from the claim's text on its own; tests hold the two against each other.
 """
 
 from __future__ import annotations
 
-from collections.abc import Mapping
+from collections.abc import Mapping, Sequence
 from dataclasses import dataclass, replace
 from fractions import Fraction
 from itertools import pairwise
@@ -54,28 +54,44 @@ class Domain:
     """The convex set an obligation refers to: the region, or a ball of a radius about the target.
 
     `target` is a proved enclosure of the target over all values it may take; where it is known to a gap only, the
-    largest ball may be larger by `beyond`.
+    largest ball may be larger by `beyond`. Of several states: the `targets` of all, and how wide the ball of radius 1
+    is along each.
     """
 
     kind: str
     radius: Fraction
     target: Ends
     beyond: Fraction = Fraction(0)
+    targets: tuple[Ends, ...] = ()
+    wide: tuple[Fraction, ...] = ()
 
     @property
     def outer(self) -> Fraction:
         return self.radius + self.beyond
 
 
+def together(obligations: Sequence[Obligation]) -> list[Variable]:
+    """The variables of several obligations, each with the cuts of all of them."""
+    found: dict[str, Variable] = {}
+    for v in (v for o in obligations for v in o.variables):
+        known = found.setdefault(v.name, v)
+        if known.cells != v.cells and not v.listed:
+            cuts = sorted({x for cell in (*known.cells, *v.cells) for x in cell})
+            found[v.name] = replace(known, cells=tuple(pairwise(cuts)))
+    return list(found.values())
+
+
 class Obligations:
-    """The obligations of a one-state closed-form claim over one shared graph."""
+    """The obligations of a claim of one stance over one shared graph."""
 
     def __init__(self, claim: Claim) -> None:
         self.claim, self.stance, self.graph = claim, claim.stances[0], Graph()
-        (self.state,) = self.stance.states
+        self.states = tuple(self.stance.states)
+        self.state = self.states[0]  # of a claim of one state, that one
         moves = self.stance.dynamics is not None
         self.motion: Motion | None = motion(Scope(self.graph, claim, self.stance)) if moves else None
-        self._fixed_target = not self.graph.variables(self._scope({}).name(f"target({self.state})"))
+        met = {s: self.graph.variables(self._scope({}).name(f"target({s})")) for s in self.states}
+        self._fixed_targets = {s for s, names in met.items() if not names}
 
     def _scope(self, bound: Mapping[str, int], cut: str = "") -> Scope:
         return Scope(self.graph, self.claim, self.stance, bound, cut, self._landed)
@@ -83,37 +99,41 @@ class Obligations:
     def _landed(self, scope: Scope, gate: int, phase: int | None = None) -> int:
         return gate if self.motion is None else landed(scope, self.motion, gate, phase)
 
-    def target(self) -> Obligation:
+    def target(self, state: str = "") -> Obligation:
         """target[s]: x* over the held quantities."""
-        return self._of(f"target[{self.state}]", self._scope({}).name(f"target({self.state})"))
+        s = state or self.state
+        return self._of(f"target[{s}]", self._scope({}).name(f"target({s})"))
 
-    def image(self) -> Obligation:
+    def image(self, state: str = "") -> Obligation:
         """image[s]: F over region and uncertain values."""
-        return self._of(f"image[{self.state}]", self._scope({}).name(f"next({self.state})"))
+        s = state or self.state
+        return self._of(f"image[{s}]", self._scope({}).name(f"next({s})"))
 
-    def slope(self, domain: Domain) -> Obligation:
-        """slope[s,s]: ∂F/∂s over the set and uncertain values."""
+    def slope(self, domain: Domain, of: str = "", by: str = "") -> Obligation:
+        """slope[s,x]: ∂F_s/∂x over the set and uncertain values."""
         bound, ranges = self._set(domain)
-        root = self._scope(bound, cut=self.state).name(f"next({self.state})")
-        return self._of(f"slope[{self.state},{self.state}]", root, self.state, ranges)
+        s, x = of or self.state, by or self.state
+        return self._of(f"slope[{s},{x}]", self._scope(bound, cut=x).name(f"next({s})"), x, ranges)
 
-    def miss(self) -> Obligation:
+    def miss(self, state: str = "") -> Obligation:
         """target-miss[s]: F(x*, w) − x* over uncertain values."""
-        target = self._scope({}).name(f"target({self.state})")
-        step = self._scope({self.state: target}).name(f"next({self.state})")
-        return self._of(f"target-miss[{self.state}]", self.graph.difference(step, target))
+        s = state or self.state
+        targets = {x: self._scope({}).name(f"target({x})") for x in self.states}
+        step = self._scope(targets).name(f"next({s})")
+        return self._of(f"target-miss[{s}]", self.graph.difference(step, targets[s]))
 
-    def moving(self) -> list[str]:
+    def moving(self, state: str = "") -> list[str]:
         """Held quantities with a `change` on which the target depends."""
-        met = self.graph.variables(self._scope({}).name(f"target({self.state})"))
+        met = self.graph.variables(self._scope({}).name(f"target({state or self.state})"))
         return [h for h in met if self.claim.uncertain[h].change is not None]
 
-    def target_slope(self, held: str) -> Obligation:
+    def target_slope(self, held: str, state: str = "") -> Obligation:
         """target-slope[s,h]: ∂x*/∂h over the held quantities."""
-        root = self._scope({}, cut=held).name(f"target({self.state})")
+        s = state or self.state
+        root = self._scope({}, cut=held).name(f"target({s})")
         # the mean value theorem runs along a segment, so a finite list counts as all that lies between
-        hulls = {h: (self._occurs(self.claim.uncertain[h]),) * 2 for h in self.moving()}
-        return self._of(f"target-slope[{self.state},{held}]", root, held, hulls)
+        hulls = {h: (self._occurs(self.claim.uncertain[h]),) * 2 for h in self.moving(s)}
+        return self._of(f"target-slope[{s},{held}]", root, held, hulls)
 
     def split_slope(self, domain: Domain) -> Obligation:
         """split-slope[s,s]: ∂(x + F − N)/∂x over the set, N the map without its correction (proofs/split.md)."""
@@ -238,30 +258,33 @@ class Obligations:
         self, domain: Domain, over: Mapping[str, Range] | None = None
     ) -> tuple[dict[str, int], dict[str, tuple[Ends, Ends]]]:
         """Gates and ranges that replace names, so that the state runs through the set."""
-        s, g = self.state, self.graph
         bound: dict[str, int] = {}
         ranges: dict[str, tuple[Ends, Ends]] = {}
         for name, given in (over or {}).items():
-            bound[name] = g.add("variable", name=name)
+            bound[name] = self.graph.add("variable", name=name)
             ranges[name] = self._outer(given), self._inner(given)
             if name in self.claim.uncertain or name in self.stance.states:
                 self._kept_by_over(name, ranges[name][0], domain)
-        if domain.kind == "ball" and s not in bound:
-            # suprema over the outer ball, points in the inner one: proofs/invariant-set.md (4)
-            (low, high), (least, most) = domain.target, self.region()[0]
-            r, far = domain.radius, domain.outer
-            if self._fixed_target:
-                reach = (low - far, high + far) if not domain.beyond else (max(least, low - far), min(most, high + far))
-                ranges[s] = reach, (high - r, low + r)
-            else:
-                # the ball moves with the target: proofs/invariant-set.md, sheared set
-                ranges[f"error({s})"] = (-far, far), (-r, r)
-                kept = {
-                    n: gate for n, gate in bound.items() if n in self.claim.uncertain
-                }  # `over` does not reach the set
-                about = self._scope(kept).name(f"target({s})")
-                bound[s] = self._kept(g.add("add", about, g.add("variable", name=f"error({s})")), domain)
+        for i, s in enumerate(self.states if domain.kind == "ball" else ()):
+            if s not in bound:
+                self._about(domain, i, bound, ranges)
         return bound, ranges
+
+    def _about(self, domain: Domain, i: int, bound: dict[str, int], ranges: dict[str, tuple[Ends, Ends]]) -> None:
+        """A state through a ball: suprema over the outer one, points in the inner one (invariant-set.md (4))."""
+        s, g = self.states[i], self.graph
+        (low, high), (least, most) = domain.targets[i] if domain.targets else domain.target, self.region(s)[0]
+        wide = domain.wide[i] if domain.wide else Fraction(1)
+        r, far = domain.radius * wide, domain.outer * wide
+        if s in self._fixed_targets:
+            clipped = max(least, low - far), min(most, high + far)
+            ranges[s] = clipped if domain.beyond or domain.wide else (low - far, high + far), (high - r, low + r)
+            return
+        # the ball moves with the target: proofs/invariant-set.md, sheared set
+        ranges[f"error({s})"] = (-far, far), (-r, r)
+        kept = {n: gate for n, gate in bound.items() if n in self.claim.uncertain}  # `over` does not reach the set
+        about = self._scope(kept).name(f"target({s})")
+        bound[s] = self._kept(g.add("add", about, g.add("variable", name=f"error({s})")), domain, s)
 
     def _supporting(self, scope: Scope) -> set[str]:
         """Variables on which rests what has to stay positive throughout a stance."""
@@ -289,18 +312,19 @@ class Obligations:
         if name in self._supporting(self._scope({})):
             _, (low, high), listed = self._cells(quantity)
             beyond = listed or not (low <= wanted[0] and wanted[1] <= high)
-            if beyond or (name == self.state and domain.kind == "ball"):
+            if beyond or (name in self.states and domain.kind == "ball"):
                 raise Bad(f"over.{name}: the stance is shown to last within the claim's own range only; narrow it")
-        if domain.kind == "ball" and name in self.graph.variables(self._scope({}).name(f"target({self.state})")):
+        centred = [s for s in self.states if name in self.graph.variables(self._scope({}).name(f"target({s})"))]
+        if domain.kind == "ball" and centred:
             _, (low, high), listed = self._cells(quantity)
             if listed or not (low <= wanted[0] and wanted[1] <= high):
                 raise Bad(f"over.{name}: the set moves with {name} and is known for its own range only; narrow it")
 
-    def _kept(self, x: int, domain: Domain) -> int:
+    def _kept(self, x: int, domain: Domain, state: str = "") -> int:
         """The state x, clipped to the region where the set as written may reach beyond it."""
         if domain.kind == "ball" and not domain.beyond:
             return x
-        g, (low, high) = self.graph, self.region()[0]
+        g, (low, high) = self.graph, self.region(state)[0]
         return g.add("min", g.add("max", x, g.number(low)), g.number(high))
 
     def _of(
@@ -362,9 +386,9 @@ class Obligations:
         cells, _, _ = self._cells(quantity)
         return min(c[0] for c in cells), max(c[1] for c in cells)
 
-    def region(self) -> tuple[Ends, Ends]:
-        """The region of the state: ends that surely contain it, and ends surely inside it."""
-        cells, inside, _ = self._cells(self.stance.states[self.state])
+    def region(self, state: str = "") -> tuple[Ends, Ends]:
+        """The region of a state: ends that surely contain it, and ends surely inside it."""
+        cells, inside, _ = self._cells(self.stance.states[state or self.state])
         return cells[0], inside
 
     def change(self, held: str) -> Fraction:

@@ -10,6 +10,8 @@ from .errors import Bad
 from .model import Claim, Quantity, Requirement
 from .obligations import Domain, Obligations
 
+MOST_STATES = 6
+
 
 def varied(claim: Claim, number: int) -> Claim:
     """The claim with what `over` of a requirement says for its ranges (proofs/obligations.md)."""
@@ -41,17 +43,22 @@ def not_yet(claim: Claim) -> str | None:
             Obligations(claim)
         except Bad as problem:
             return str(problem)
-    if len(stance.states) > 1:
-        return f"state: {len(stance.states)} states; only claims of one state can be proved yet"
+    several = len(stance.states) > 1
+    if len(stance.states) > MOST_STATES:
+        return f"state: {len(stance.states)} states; claims of up to {MOST_STATES} states can be proved"
+    if several and claim.route not in ("best", "slope"):
+        return f"route: {claim.route} is known for a single state; use slope or best"
     if claim.horizon != 1:
         return f"horizon: {claim.horizon}; only one step at a time can be proved yet; remove the key"
     if claim.route == "sector":
         return "route: sector cannot be proved yet; use slope, split, curve or best"
     if claim.route == "split" and not claim.correction:
         return "route: split tells a correction apart; name it in `correction`, or use another route"
-    if any(set(constant(w, claim.values)) != {Fraction(1)} for w in claim.weights.values()):
+    if not several and any(set(constant(w, claim.values)) != {Fraction(1)} for w in claim.weights.values()):
         return "metric.weights: only the weight 1 can be used with a single state yet; remove the table"
     for number, r in enumerate(claim.requirements, 1):
+        if several and r.during:
+            return f"require[{number}]: a push during the stance can be proved for a single state only, yet"
         if r.during and stance.dynamics is not None:
             try:
                 o = Obligations(claim)

@@ -1,0 +1,200 @@
+"""Lines about several states in the making: the numbers on them are the checker's own (proofs/several.md)."""
+
+from __future__ import annotations
+
+from collections.abc import Mapping, Sequence
+from fractions import Fraction
+from typing import Any
+
+from ..bounding.evaluate import to_float
+from ..checker.jacobians import Table, inside, middle_and_half
+from ..checker.matrices import Leaf, Matrix, Metric, norm_over, root
+from ..checker.numerals import decimal_up
+from ..checker.rules import Line, place
+from ..checker.several import compared, keyed, largest, movements
+from .lines import IRRATIONAL, RATIONAL_CELLS, RATIONAL_TERMS, Writer, downward, upward
+
+DIGITS = 25
+NEARER = 1 - 1e-12
+
+
+class NormWriter(Writer):
+    """Lines of a proof about several states."""
+
+    def spelled(self, proves: str, point: Mapping[str, Fraction], on: int | None) -> dict[str, str]:
+        """A point as a witness, moved towards the target until it lies in the ball."""
+        at, domain = super().spelled(proves, point, on), self.domain(on)
+        if domain is None or not domain.ball or domain.metric is None:
+            return at
+        middles = {f"error({s})": Fraction(0) for s in self.derivation.states}
+        for s, (low, high) in zip(self.derivation.states, domain.targets, strict=True):
+            middles[s] = (low + high) / 2
+        met = [n for n in at if n in middles]
+        off = [high - low for low, high in domain.targets]
+        signed = [sum((Fraction(at[n]) - middles[n] for n in (s, f"error({s})") if n in met), Fraction(0))
+                  for s in self.derivation.states]  # fmt: skip
+        size, room = domain.metric.most(signed), domain.radius - domain.metric.length(off)
+        if size > room >= 0:
+            share = Fraction(to_float(room / size) * NEARER)
+            at |= {n: str(middles[n] + share * (Fraction(at[n]) - middles[n])) for n in met}
+        return at
+
+    def point(self, proves: str, at: Mapping[str, str], bits: int, on: int | None) -> tuple[Fraction, Fraction]:
+        meaning, domain = self.derivation.meaning(proves, self.domain(on)), self.domain(on)
+        inside(self.derivation, domain, dict(zip((v.name for v in meaning.variables), place(meaning, at), strict=True)))
+        return super().point(proves, at, bits, on)
+
+    def metric(self, kind: str, rows: Matrix, inverse: Matrix) -> int:
+        witness = {"kind": kind, "rows": texts(rows), "inverse": texts(inverse)}
+        return self.append("metric", "metric", [], witness, {})
+
+    def append(
+        self, rule: str, proves: str, uses: list[int], witness: dict[str, Any], concludes: dict[str, str]
+    ) -> int:
+        """A line the checker goes through at once; raises checker.rules.Rejected where it does not hold."""
+        line = {"rule": rule, "proves": proves, "uses": uses, "witness": witness, "concludes": concludes}
+        self.proof.add(line)
+        self.raw.append(line)
+        return len(self.raw)
+
+    def about(self, metric: int, targets: Sequence[int], radius: Fraction) -> int:
+        """The ball of a metric about the targets, the largest in the region as far as points of the targets show."""
+        d, norm = self.derivation, self.proof.lines[metric].metric
+        edges = []
+        for i, s in enumerate(d.states):
+            (low, high), _ = d.region(s)
+            row = norm.inverse[i] if norm is not None else ()
+            wide = sum(x * x for x in row) if norm is not None and norm.kind == "ellipsoid" else sum(map(abs, row)) ** 2
+            for n, x in self.proof.lines.items():
+                if (x.rule, x.proves) == ("point", f"target[{s}]"):
+                    edge = min(high - x.concludes["lower"], x.concludes["upper"] - low)
+                    edges.append((max(edge, Fraction(0)) ** 2 / wide, n))
+        if not edges:
+            return self.append("smaller-ball", "ball", [metric, *targets], {}, {"radius": downward(radius)})
+        square, nearest = min(edges)
+        outer = Fraction(decimal_up(root(square)[1], DIGITS))
+        concludes = {"radius": downward(radius), "outer": upward(max(outer, Fraction(downward(radius))))}
+        return self.append("largest-ball", "ball", [metric, *targets, nearest], {}, concludes)
+
+    def exact(self, proves: str, on: int) -> bool:
+        """Whether exact rational arithmetic can carry all entries of a matrix, and is worth it."""
+        d, domain = self.derivation, self.proof.lines[on].domain
+        columns = d.states if proves == "slopes" else ("",)
+        names = [f"slope[{s},{x}]" if x else f"target-miss[{s}]" for s in d.states for x in columns]
+        below = {k for name in names for k in d.terms.below(d.meaning(name, domain).root)}
+        cells = 1
+        for name in names:
+            for v in d.meaning(name, domain).variables:
+                cells = max(cells, len(v.cells))
+        few = cells <= RATIONAL_CELLS and len(below) <= RATIONAL_TERMS
+        return few and not any(d.terms.all[k][0] in IRRATIONAL for k in below)
+
+    def leaves(self, proves: str, trees: Sequence[str], bits: int, on: int) -> list[Leaf]:
+        """The leaves of a matrix over the set; raises checker.reals.Undefined where one has no enclosure."""
+        domain = self.proof.lines[on].domain
+        if domain is None:
+            raise ValueError("no set")
+        return list(Table(self.derivation, proves, domain, bits, self._flows()).leaves(list(trees)))
+
+    def matrix(self, proves: str, trees: Sequence[str], bits: int, on: int, leaves: list[Leaf]) -> int:
+        """The norm of a matrix over the set, as its leaves show it."""
+        domain = self.proof.lines[on].domain
+        norm: Metric | None = None if domain is None else domain.metric
+        if norm is None:
+            raise ValueError("no metric")
+        most = Fraction(0)
+        for leaf in leaves:
+            most = norm_over(norm, leaf, most)
+        witness = {"bits": bits, "trees": list(trees)}
+        return self._measured("matrix", proves, on, witness, {"norm": upward(most)}, None)
+
+    def entries(
+        self, proves: str, trees: Sequence[str], bits: int, on: int, leaves: list[Leaf], basis: tuple[Matrix, Matrix]
+    ) -> int:
+        """The largest entries of a matrix in a basis over the set."""
+        found, _ = largest(leaves, basis, proves)
+        witness = {"bits": bits, "trees": list(trees), "rows": texts(basis[0]), "inverse": texts(basis[1])}
+        return self._measured("entries", proves, on, witness, {k: upward(x) for k, x in keyed(found).items()}, basis)
+
+    def _measured(
+        self,
+        rule: str,
+        proves: str,
+        on: int,
+        witness: dict[str, Any],
+        concludes: dict[str, str],
+        basis: tuple[Matrix, Matrix] | None,
+    ) -> int:
+        uses = [on, *([self.flow] if self.flow is not None and self._moves(proves, on) else [])]
+        self.raw.append({"rule": rule, "proves": proves, "uses": uses, "witness": witness, "concludes": concludes})
+        claimed = {k: Fraction(x) for k, x in concludes.items()}
+        domain = self.proof.lines[on].domain
+        self.proof.lines[len(self.raw)] = Line(rule, proves, tuple(uses), claimed, domain, True, basis=basis)
+        return len(self.raw)
+
+    def _moves(self, proves: str, on: int) -> bool:
+        """Whether a matrix rests on the flow of the stance."""
+        d, domain = self.derivation, self.proof.lines[on].domain
+        columns = d.states if proves == "slopes" else ("",)
+        names = [f"slope[{s},{x}]" if x else f"target-miss[{s}]" for s in d.states for x in columns]
+        return any(self._flow(d.meaning(name, domain).root) for name in names)
+
+    def stretch(self, proves: str, point: dict[str, Fraction], direction: Sequence[float], bits: int, on: int) -> int:
+        """The norm surely taken at a point; raises checker.rules.Rejected where the point is not in the set."""
+        domain = self.proof.lines[on].domain
+        norm = None if domain is None else domain.metric
+        if domain is None or norm is None:
+            raise ValueError("no metric")
+        table = Table(self.derivation, proves, domain, bits, self._flows())
+        at = {}
+        for v in table.variables:
+            x = point[v.name] if v.listed else min(max(point[v.name], v.inside[0]), v.inside[1])
+            rank = next((k for k, c in enumerate(v.cells) if c[0] <= x <= c[1]), 0)
+            at[v.name] = f"#{rank}" if v.listed else str(x)
+        vector = [Fraction(x).limit_denominator(10**9) for x in direction]
+        middle, half = middle_and_half(table.at(at))
+        image = [sum((x * y for x, y in zip(row, vector, strict=True)), Fraction(0)) for row in middle]
+        off = [sum((x * abs(y) for x, y in zip(row, vector, strict=True)), Fraction(0)) for row in half]
+        scale = norm.most(vector) if proves == "slopes" else abs(vector[0])
+        lower = (norm.least(image) - norm.length(off)) / scale
+        witness = {"bits": bits, "at": at, "direction": [str(x) for x in vector]}
+        uses = [on, *([self.flow] if self.flow is not None and self._moves(proves, on) else [])]
+        return self.append("stretch", proves, uses, witness, {"lower": downward(lower)})
+
+    def componentwise(self, invariant: int, slopes: int, misses: int, moves: list[int]) -> int | None:
+        """A bound for each state by comparison; None where the entries do not contract."""
+        d, lines = self.derivation, self.proof.lines
+        k, residual = compared(d, lines[slopes], lines[misses], [lines[n] for n in moves])
+        p, b = solved(k, [Fraction(1)] * len(k)), solved(k, residual)
+        basis = lines[slopes].basis
+        if p is None or b is None or basis is None or min(p) <= 0 or min(b) < 0:
+            return None
+        bounds = [sum((abs(x) * y for x, y in zip(row, b, strict=True)), Fraction(0)) for row in basis[1]]
+        concludes = {s: upward(x) for s, x in zip(d.states, bounds, strict=True)}
+        witness = {"p": [str(x) for x in p], "b": [str(x) for x in b]}
+        return self.append("componentwise", "componentwise", [invariant, slopes, misses, *moves], witness, concludes)
+
+
+def moves_of(writer: Writer) -> list[tuple[str, str]]:
+    """States and held quantities that move their targets, in the order in which theorems name them."""
+    return movements(writer.derivation)
+
+
+def solved(k: Matrix, right: Sequence[Fraction]) -> list[Fraction] | None:
+    """(1 − K)⁻¹ applied, exactly; None where it has no inverse."""
+    n = len(k)
+    rows = [[(i == j) - x for j, x in enumerate(row)] + [right[i]] for i, row in enumerate(k)]
+    for i in range(n):
+        pivot = next((r for r in range(i, n) if rows[r][i]), None)
+        if pivot is None:
+            return None
+        rows[i], rows[pivot] = rows[pivot], rows[i]
+        rows[i] = [x / rows[i][i] for x in rows[i]]
+        for r in range(n):
+            if r != i and rows[r][i]:
+                rows[r] = [x - rows[r][i] * y for x, y in zip(rows[r], rows[i], strict=True)]
+    return [row[n] for row in rows]
+
+
+def texts(m: Matrix) -> list[list[str]]:
+    return [[str(x) for x in row] for row in m]

@@ -1,0 +1,79 @@
+"""What limits a requirement about several states, said to people. Nothing here is proved."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+
+from ..checker.results import Outcome, Results
+from ..claim import Claim
+from ..claim.constants import constant
+from ..claim.model import Requirement
+from ..claim.obligations import RANGED, Obligations
+from .remarks import STOPS
+
+
+@dataclass(frozen=True)
+class SeveralRemarks:
+    """Remarks on the requirements of a claim of several states."""
+
+    claim: Claim
+    obligations: Obligations
+    results: Results
+    limits: dict[str, str]
+    interrupted: bool
+
+    def all(self) -> list[tuple[str | None, bool]]:
+        """A remark (or none) and whether to pursue, a requirement."""
+        return [self.remark(n) for n in range(1, len(self.claim.requirements) + 1)]
+
+    def remark(self, number: int) -> tuple[str | None, bool]:
+        r, outcome = self.claim.requirements[number - 1], self.results.requirements[number - 1]
+        parts = []
+        left = self.obligations.leaves_out(r)
+        if left:
+            parts.append(f"over leaves out values of {', '.join(left)} that occur")
+        elif self.results.derivation.leaves_out(self.results.statement.requirements[number - 1]):
+            parts.append("over sets a defined name free: its own expression is not used")
+        pursue = False
+        if outcome.verdict == "undecided":
+            pursue = self.open(r, outcome) and not self.interrupted
+            names = (
+                [f"require[{number}]"] if r.kind in RANGED else [n for n in self.limits if not n.startswith("require")]
+            )
+            parts += [f"{n}: {STOPS.get(x, x)}" for n in names if (x := self.limits.get(n, ""))]
+            parts.append("interrupted" if self.interrupted else self.why(r))
+        return ("; ".join(p for p in parts if p)[:900] or None), pursue
+
+    def why(self, r: Requirement) -> str:
+        """The first thing that is missing."""
+        found = self.results
+        if found.unsupported:
+            return f"support[{found.unsupported}], which the stance asks for, is not shown to be above 0"
+        gain, residual = found.gain.upper, found.residual.upper
+        if not found.settled:
+            size = (
+                ""
+                if gain is None or residual is None
+                else (
+                    f": in the best norm found the gain is {float(gain):.4g}, the residual {float(residual):.4g}, "
+                    f"the largest ball has radius {float(found.radius.lower or 0):.4g}"
+                )
+            )
+            return f"no set that is mapped into itself was found{size}"
+        if not found.whole and r.kind not in ("radius", "steps"):
+            return "only a smaller ball than the largest in the region is kept; with `shrink = true` it would count"
+        if r.kind == "sharp_bound":
+            return "the curve route, which has the sharp bound, is known for a single state only"
+        if r.kind == "settles":
+            return "the bound is not below the radius of the set"
+        if r.kind == "steps":
+            return "no proved sequence of steps is as short"
+        return "the constant lies beyond what is proved"
+
+    def open(self, r: Requirement, outcome: Outcome) -> bool:
+        """Whether what is proved and what is attained leave room for the constant."""
+        if r.constant is None or outcome.value is None:
+            return False
+        low, high = constant(r.constant, self.claim.values)
+        least, most = outcome.value.lower, outcome.value.upper
+        return least is not None and most is not None and least <= high and low <= most and least < most

@@ -1,0 +1,117 @@
+"""Jacobians and misses of several states over boxes and at points (proofs/matrix.md (2))."""
+
+from __future__ import annotations
+
+from collections.abc import Iterator, Mapping
+from fractions import Fraction
+from itertools import pairwise, product
+from typing import Any
+
+from .courses import arithmetic, valued
+from .derive import Derivation, Domain, Meaning, Ranged
+from .flows import Flows
+from .forms import boxes
+from .matrices import Leaf, Matrix
+from .numerals import Rejected
+from .ranges import Box, Ends, Evaluator
+from .reals import Undefined
+
+TABLES = ("slopes", "misses")
+
+
+class Table:
+    """The entries of ∂F/∂x over a set (`slopes`), or of F(x*, w) − x* (`misses`), in the variables of all of them."""
+
+    def __init__(self, d: Derivation, proves: str, domain: Domain, bits: Any, flows: Flows | None) -> None:
+        if proves not in TABLES:
+            raise Rejected(f"a matrix proves {' or '.join(TABLES)}")
+        self.d, self.domain, self.a = d, domain, arithmetic(bits)
+        columns = d.states if proves == "slopes" else ("",)
+        names = [[f"slope[{s},{x}]" if x else f"target-miss[{s}]" for x in columns] for s in d.states]
+        meanings = [[d.meaning(name, domain) for name in row] for row in names]
+        self.variables = together([m for row in meanings for m in row])
+        met = [v.name for v in self.variables]
+        self.rows = [
+            [Evaluator(d.terms, m.root, m.by, met, d.statement.libraries, self.a, flows) for m in row]
+            for row in meanings
+        ]
+
+    def leaves(self, trees: Any) -> Iterator[Leaf]:
+        """The matrix over every leaf of its splitting trees."""
+        if not isinstance(trees, list) or not all(isinstance(t, str) for t in trees):
+            raise Rejected("trees: a list of texts")
+        for box, form in boxes(list(product(*(v.cells for v in self.variables))), trees):
+            if form not in ("c", "d"):
+                raise Undefined(f"unknown form {form!r}")
+            yield self.leaf(box, form)
+
+    def leaf(self, box: Box, form: str) -> Leaf:
+        """proofs/matrix.md (2): the affine part of each entry about the middle, and what is left."""
+        parts = [[self.entry(e, box, form) for e in row] for row in self.rows]
+        slopes = tuple(
+            tuple(tuple(p[1].get(k, Fraction(0)) for p in row) for row in parts)
+            for k in range(len(box))
+            if any(k in p[1] for row in parts for p in row)
+        )
+        centre, rest = (
+            tuple(tuple(p[0] for p in row) for row in parts),
+            tuple(tuple(p[2] for p in row) for row in parts),
+        )
+        return Leaf(centre, slopes, rest)
+
+    def entry(self, e: Evaluator, box: Box, form: str) -> tuple[Fraction, dict[int, Fraction], Fraction]:
+        """Middle, slopes times half widths, and the rest of one entry over a box."""
+        jet = e.run(box, form == "c")
+        low, high = self.a.ends(e.wanted(jet))
+        direct = (low + high) / 2, dict[int, Fraction](), (high - low) / 2
+        if form == "d" or (e.by and (e.several or any(len(x) > 1 for x in e.sides.values()))):
+            return direct  # a derivative that may jump has no other form
+        found = {k: self.a.ends(slope) for k, slope in e.slopes(jet).items() if slope is not None}
+        low, high = self.a.ends(e.wanted(e.run([((x + y) / 2,) * 2 for x, y in box], False, part=True)))
+        half = {k: (box[k][1] - box[k][0]) / 2 for k in found}
+        rest = (high - low) / 2 + sum(((q - p) / 2 * half[k] for k, (p, q) in found.items()), Fraction(0))
+        if direct[2] <= rest:
+            return direct
+        return (low + high) / 2, {k: (p + q) / 2 * half[k] for k, (p, q) in found.items() if half[k]}, rest
+
+    def at(self, at: Any) -> list[list[Ends]]:
+        """All entries at a point of the set."""
+        box = self.place(at)
+        return [[self.a.ends(e.wanted(e.run(box, False, touching=True))) for e in row] for row in self.rows]
+
+    def place(self, at: Any) -> Box:
+        if not isinstance(at, dict) or set(at) != {v.name for v in self.variables}:
+            raise Rejected("at: one value for each variable of the obligation")
+        box = [valued(v, at[v.name]) for v in self.variables]
+        inside(self.d, self.domain, dict(zip((v.name for v in self.variables), box, strict=True)))
+        return box
+
+
+def inside(d: Derivation, domain: Domain | None, at: Mapping[str, Ends]) -> None:
+    """Raises Rejected where a point is not shown to lie in the ball of a metric: its box reaches beyond it."""
+    if domain is None or not domain.ball or domain.metric is None:
+        return
+    middle, half = [], []
+    for s, (low, high) in zip(d.states, domain.targets, strict=True):
+        x, error = at.get(s), at.get(f"error({s})", (Fraction(0), Fraction(0)))
+        p, q = error if x is None else (x[0] - high, x[1] - low)
+        middle.append((p + q) / 2)
+        half.append((q - p) / 2)
+    if not domain.metric.most(middle) + domain.metric.length(half) <= domain.radius:
+        raise Rejected("at: not shown to be in the set")
+
+
+def together(meanings: list[Meaning]) -> list[Ranged]:
+    """The variables of several obligations, each with the cuts of all of them."""
+    found: dict[str, Ranged] = {}
+    for v in (v for m in meanings for v in m.variables):
+        known = found.setdefault(v.name, v)
+        if known.cells != v.cells and not v.listed:
+            cuts = sorted({x for cell in (*known.cells, *v.cells) for x in cell})
+            found[v.name] = Ranged(v.name, tuple(pairwise(cuts)), v.inside, False)
+    return list(found.values())
+
+
+def middle_and_half(rows: list[list[Ends]]) -> tuple[Matrix, Matrix]:
+    middle = tuple(tuple((p + q) / 2 for p, q in row) for row in rows)
+    return middle, tuple(tuple((q - p) / 2 for p, q in row) for row in rows)

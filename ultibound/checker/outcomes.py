@@ -1,0 +1,225 @@
+"""What the lines of a proof about several states amount to: one metric, a figure for each state (proofs/several.md)."""
+
+from __future__ import annotations
+
+from fractions import Fraction
+from typing import Any
+
+from .grammar import constant
+from .matrices import Metric, dot
+from .results import NOTHING, Outcome, Results, Route, Span, compared, less, opposed, verdict
+from .rules import Proof, Rejected
+
+
+class SeveralResults(Results):
+    """Everything `results` may claim of a claim of several states."""
+
+    def __init__(self, proof: Proof, variant: int = 0) -> None:
+        self.proof, self.variant, self.needed, self.unsupported = proof, variant, set[int](), 0
+        self.derivation = proof.about(variant)
+        self.statement, self.states = self.derivation.statement, self.derivation.states
+        self.state, self.any = self.states[0], self.statement.shrink
+        balls = [x for rule in ("largest-ball", "smaller-ball") if (x := self.one(rule, "ball")) is not None]
+        if len(balls) != 1 or balls[0].domain is None or balls[0].domain.metric is None:
+            raise Rejected("the proof has not exactly one ball about the target")
+        (ball,) = balls
+        rules = ("invariant-region", "invariant-ball", "invariant-rows")
+        invariant = next((x for rule in rules if (x := self.one(rule, "invariant")) is not None), None)
+        self.domain = invariant.domain if invariant is not None else ball.domain
+        self.metric: Metric = balls[0].domain.metric
+        self.settled = invariant is not None and self.supported()
+        self.partial = not self.settled and (ball.rule == "smaller-ball" or invariant is not None)
+        self.centres = {s: Span(*x) for s, x in zip(self.states, balls[0].domain.targets, strict=True)}
+        self.edges = {s: self.reached(s) for s in self.states} if self.settled else dict.fromkeys(self.states)
+        self.radius = Span(ball.concludes["radius"], ball.concludes.get("outer"))
+        self.edge, self.orbit, self.room, self.missed = self.radius.upper, None, None, None
+        self.kind, self.whole = self.set_found(invariant if self.settled else None, ball)
+        self.routes = {} if self.partial or self.one("slope", "slope") is None else {"slope": self.of_slope()}
+        self.reported = "slope"
+        route = self.routes.get("slope", Route())
+        self.gain, self.residual, self.bound = route.gain, route.residual, route.bound
+        self.best = self.sharp = None
+        self.bounds = self.bounds_by_state()
+        self.push = None
+        self.pushes = {s: self.pushed_along(s) for s in self.states}
+        self.radii = {s: self.radius_along(s) for s in self.states}
+        numbered = enumerate(self.statement.requirements, 1)
+        self.requirements = [self.required(n, r) for n, r in numbered if not variant or n == variant]
+
+    def escapes(self) -> bool:
+        """Whether a point leaves the region in some state."""
+        for s in self.states:
+            (low, high), _ = self.derivation.region(s)
+            for n, x in self.lines("point", f"image[{s}]"):
+                if x.concludes["lower"] > high or x.concludes["upper"] < low:
+                    self.needed.add(n)
+                    return True
+        return False
+
+    def reached(self, s: str) -> Span:
+        """The distance of the target of a state from the edge of its region: proved from below, taken from above."""
+        (low, high), (inner_low, inner_high) = self.derivation.region(s)
+        centre = self.centres[s]
+        if centre.lower is None or centre.upper is None:
+            return NOTHING
+        found = [
+            (min(high - x.concludes["lower"], x.concludes["upper"] - low), n)
+            for n, x in self.lines("point", f"target[{s}]")
+        ]
+        if found:
+            self.needed.add(min(found)[1])
+        return Span(min(centre.lower - inner_low, inner_high - centre.upper), min(found)[0] if found else None)
+
+    def of_slope(self) -> Route:
+        """proofs/several.md (2): gain and residual in the metric, and the bound they give."""
+        line = self.one("slope", "slope")
+        if line is None or line.domain != self.domain:
+            raise Rejected("gain and residual of slope refer to another set")
+        k, least = self.stretched("slopes"), self.stretched("misses")
+        gain, residual = Span(k, line.concludes["gain"]), Span(least, line.concludes["residual"])
+        bounded = self.one("ultimate-bound", "bound[slope]")
+        if bounded is None:
+            return Route(gain, residual)
+        lower = None if k is None or least is None or not k < 1 else least / (1 - k)
+        return Route(gain, residual, Span(lower, bounded.concludes["bound"]))
+
+    def stretched(self, proves: str) -> Fraction | None:
+        """The largest norm surely taken."""
+        found = [(x.concludes["lower"], n) for n, x in self.lines("stretch", proves) if x.domain == self.domain]
+        if not found:
+            return None
+        self.needed.add(max(found)[1])
+        return max(max(found)[0], Fraction(0))
+
+    def bounds_by_state(self) -> dict[str, Fraction]:
+        """proofs/several.md (2), (3): the least bound of each state, by the norm and by comparison."""
+        lines = self.lines("componentwise", "componentwise")
+        if any(line.domain != self.domain for _, line in lines):
+            raise Rejected("the comparison refers to another set")
+        if not self.settled:
+            return {}
+        found: dict[str, Fraction] = {}
+        for i, s in enumerate(self.states):
+            each = [(line.concludes[s], n) for n, line in lines]
+            if self.bound is not None and self.bound.upper is not None:
+                each.append((self.bound.upper * self.metric.support(i), 0))
+            if each:
+                found[s], number = min(each)
+                self.needed.update([number] if number else [])
+        return found
+
+    def within(self) -> Fraction | None:
+        """The least bound in the metric's norm."""
+        each = [] if self.bound is None or self.bound.upper is None else [self.bound.upper]
+        if len(self.bounds) == len(self.states):
+            each.append(self.metric.length([self.bounds[s] for s in self.states]))
+        return min(each, default=None)
+
+    def radius_along(self, s: str) -> Span | None:
+        """How far a state may start from its target: a section of the set (proofs/several.md (5))."""
+        if not self.settled:
+            return None
+        if self.kind == "region":
+            return self.edges[s]
+        least, most = self.metric.unit(self.states.index(s))
+        lower = None if self.radius.lower is None else self.radius.lower / most
+        return Span(lower, None if self.radius.upper is None else self.radius.upper / least)
+
+    def pushed_along(self, s: str) -> Span | None:
+        """What is left of the set along a state after settling: proofs/several.md (5)."""
+        if not self.whole:
+            return None
+        if self.kind == "region":
+            room, edge = self.bounds.get(s), self.edges[s]
+            left = None if room is None or edge is None or edge.lower is None else edge.lower - room
+        else:
+            inside = self.within()
+            span = None if inside is None or self.radius.lower is None else self.radius.lower - inside
+            left = None if span is None else span / self.metric.unit(self.states.index(s))[1]
+        return Span(left, None) if left is not None and left > 0 else None
+
+    def required(self, number: int, r: Any) -> Outcome:
+        if r.stance is not None or r.kind not in (
+            "bound",
+            "sharp_bound",
+            "radius",
+            "push",
+            "steps",
+            "gain",
+            "residual",
+        ):
+            return super().required(number, r)
+        if r.over:
+            return self.elsewhere(number)
+        c = constant(r.constant, self.statement.values)
+        if r.kind == "radius":
+            span = self.radii[r.state]
+            return verdict(span is not None and compared(r.relation, Span(span.lower, None), c), False, span)
+        if r.kind == "push":
+            span = None if r.during else self.pushes[r.state]
+            return verdict(span is not None and less(c[1], span.lower), False, span)
+        if r.kind == "steps":
+            return self.stepped_along(r, c)
+        if r.kind in ("bound", "sharp_bound") and r.state is not None:
+            bound = self.bounds.get(r.state)
+            span = None if bound is None or r.kind == "sharp_bound" else Span(None, bound)
+            return verdict(self.whole and span is not None and compared(r.relation, span, c), False, span)
+        found = {"bound": self.bound, "gain": self.gain, "residual": self.residual}.get(r.kind)
+        upper = Span(None, None if found is None else found.upper)
+        proved = self.whole and compared(r.relation, upper, c) and not (r.kind == "gain" and self.derivation.loose())
+        # in a metric the claim fixes, what is surely taken settles it; in another norm it might be less
+        final = self.stated() and not self.any and r.kind != "bound" and found is not None
+        return verdict(proved, final and opposed(r.relation, Span(None, found.lower if found else None), c), found)
+
+    def stated(self) -> bool:
+        return self.statement.metric == "box" or bool(self.statement.weights)
+
+    def settles(self) -> Outcome:
+        """proofs/ultimate-bound.md: a bound inside the set, in its norm or state by state."""
+        inside = self.within()
+        if self.kind == "region":
+            edges = [self.edges[s] for s in self.states]
+            limits = [None if x is None else x.lower for x in edges]
+            by_state = [self.bounds.get(s) for s in self.states]
+            ok = self.whole and all(less(b, x) for b, x in zip(by_state, limits, strict=True))
+        else:
+            ok = self.whole and less(inside, self.radius.lower)
+        return verdict(ok, False, None if inside is None else Span(None, inside))
+
+    def stepped_along(self, r: Any, c: tuple[Fraction, Fraction]) -> Outcome:
+        """proofs/several.md (5): steps after which a state stays within `to`, the others on target at the start."""
+        start, end = (constant(e, self.statement.values) for e in (r.start, r.end))
+        i = self.states.index(r.state)
+        limit = self.radii[r.state]
+        most: int | None = None
+        if self.settled and limit is not None and less(start[1], limit.lower, equal=True):
+            wide = self.metric.support(i)
+            most = self.count("slope", start[1] * self.metric.unit(i)[1], end[0] / wide)
+        span = None if most is None else Span(None, Fraction(most))
+        proved = most is not None and compared(r.relation, Span(None, Fraction(most)), c)
+        return verdict(proved, False, span)
+
+    def by_state(self) -> dict[str, dict[str, Span | None]]:
+        found: dict[str, dict[str, Span | None]] = {}
+        for s in self.states:
+            bound = Span(None, self.bounds[s]) if s in self.bounds else None
+            found[s] = {"bound": bound, "sharp_bound": None, "radius": self.radii[s], "push": self.pushes[s]}
+        return found
+
+    def targets(self) -> dict[str, Span]:
+        return self.centres
+
+    def norm(self) -> dict[str, Any]:
+        """Weights of a box, V of a polytope, P = VᵀV of an ellipsoid, exactly."""
+        rows = self.metric.rows
+        if self.metric.kind == "box":
+            return {"kind": "box", "weights": {s: str(rows[i][i]) for i, s in enumerate(self.states)}}
+        if self.metric.kind == "ellipsoid":
+            columns = tuple(zip(*rows, strict=True))
+            rows = tuple(tuple(dot(a, b) for b in columns) for a in columns)
+        return {"kind": self.metric.kind, "matrix": [[str(x) for x in row] for row in rows]}
+
+
+def results_of(proof: Proof) -> Results:
+    """What a proof amounts to, of one state or of several."""
+    return SeveralResults(proof) if len(proof.derivation.states) > 1 else Results(proof)

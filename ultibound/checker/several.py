@@ -1,0 +1,264 @@
+"""Theorems about several states: the ball of a metric, what contracts in it, entry by entry (proofs/several.md)."""
+
+from __future__ import annotations
+
+from collections.abc import Iterable
+from dataclasses import replace
+from fractions import Fraction
+from typing import Any
+
+from .derive import Derivation, Domain
+from .grammar import constant
+from .jacobians import Table, middle_and_half
+from .matrices import Leaf, Matrix, Metric, comparison, entries, metric, norm_at_most
+from .numerals import Rejected, quantity
+from .theorems import Line, Quantities, magnitude, parted, require
+
+
+def stated(d: Derivation, proves: str, used: list[Line], witness: dict[str, Any]) -> Metric:
+    """Rule metric: a norm of the kind, and with the weights, that the claim asks for."""
+    if proves != "metric" or used:
+        raise Rejected("a metric rests on no other line")
+    n, asked = len(d.states), d.statement.metric
+    found = metric(str(witness["kind"]), matrix(witness["rows"], "rows"), matrix(witness["inverse"], "inverse"), n)
+    if asked not in ("auto", found.kind):
+        raise Rejected(f"kind: the claim asks for {asked}")
+    if asked == "box" or d.statement.weights:
+        for i, s in enumerate(d.states):
+            low, high = constant(d.statement.weights[s], d.statement.values) if s in d.statement.weights else (1, 1)
+            if found.kind != "box" or not low == found.rows[i][i] == high:
+                raise Rejected(f"rows: the weight of {s} is not the one the claim states, exactly")
+    return found
+
+
+def numbers(texts: Any, place: str, count: int) -> list[Fraction]:
+    if not isinstance(texts, list) or len(texts) != count:
+        raise Rejected(f"{place}: a list of {count} numbers")
+    return [quantity(x, place) for x in texts]
+
+
+def matrix(texts: Any, place: str) -> Matrix:
+    if not isinstance(texts, list) or not all(isinstance(row, list) for row in texts):
+        raise Rejected(f"{place}: a list of rows")
+    return tuple(tuple(quantity(x, place) for x in row) for row in texts)
+
+
+def ball(d: Derivation, rule: str, proves: str, used: list[Line], claimed: Quantities) -> Domain:
+    """proofs/several.md (1): {‖e‖ <= R} lies in the region; points of the targets show that no larger one does."""
+    n, points = len(d.states), used[1 + len(d.states) :]
+    targets = [("range", f"target[{s}]") for s in d.states]
+    require(proves, "ball", used[: 1 + n], [("metric", "metric"), *targets])
+    norm, spans = used[0].metric, tuple((x.concludes["lower"], x.concludes["upper"]) for x in used[1 : 1 + n])
+    if norm is None or not claimed["radius"] >= 0:
+        raise Rejected("radius: below nothing")
+    for i, (s, (low, high)) in enumerate(zip(d.states, spans, strict=True)):
+        _, inner = d.region(s)
+        if not claimed["radius"] * norm.support(i) <= min(low - inner[0], inner[1] - high):
+            raise Rejected(f"radius: the ball is not shown to lie in the region of {s}")
+    found = Domain(True, claimed["radius"], spans[0], targets=spans, metric=norm)
+    if rule == "smaller-ball":
+        if points:
+            raise Rejected("a smaller ball rests on the metric and the targets")
+        return found
+    edges = []
+    for line in points:
+        place = [i for i, s in enumerate(d.states) if (line.rule, line.proves) == ("point", f"target[{s}]")]
+        if not place or len(norm.rows) != n:
+            raise Rejected("outer: points of the targets, and a square matrix")
+        (low, high), _ = d.region(d.states[place[0]])
+        edges.append((min(high - line.concludes["lower"], line.concludes["upper"] - low), place[0]))
+    if not any(reaches(norm, claimed["outer"], i, edge) for edge, i in edges):
+        raise Rejected("outer: larger balls are not shown to leave the region")
+    return replace(found, beyond=claimed["outer"] - found.radius)
+
+
+def reaches(norm: Metric, outer: Fraction, state: int, edge: Fraction) -> bool:
+    """Whether the ball of that radius surely reaches as far along a state: exact, also where a root is meant."""
+    row = norm.inverse[state]
+    if norm.kind == "ellipsoid":
+        return outer >= 0 and outer * outer * sum(x * x for x in row) >= edge * edge
+    return outer * sum(map(abs, row)) >= edge
+
+
+def invariant_region(d: Derivation, proves: str, used: list[Line]) -> Domain:
+    """proofs/invariant-set.md (1), state by state."""
+    n, norm = len(d.states), used[0].metric if used else None
+    wanted = [("range", f"{x}[{s}]") for x in ("target", "image") for s in d.states]
+    require(proves, "invariant", used, [("metric", "metric"), *wanted])
+    for line, s in zip(used[1:], (*d.states, *d.states), strict=True):
+        _, inner = d.region(s)
+        if not (inner[0] <= line.concludes["lower"] and line.concludes["upper"] <= inner[1]):
+            raise Rejected(f"{line.proves} is not shown to stay in the region")
+    spans = tuple((x.concludes["lower"], x.concludes["upper"]) for x in used[1 : 1 + n])
+    return Domain(False, Fraction(0), spans[0], targets=spans, metric=norm)
+
+
+def concluded(
+    d: Derivation, rule: str, proves: str, used: list[Line], witness: dict[str, Any], claimed: Quantities
+) -> Line | None:
+    """A line of a rule that is about several states; None where the rule is another's."""
+    several, line = len(d.states) > 1, Line(rule, proves, (), claimed)
+    if rule in ("metric", "matrix", "entries", "stretch", "componentwise", "invariant-rows") and not several:
+        raise Rejected(f"{rule}: the claim has a single state")
+    if rule == "metric":
+        return replace(line, metric=stated(d, proves, used, witness))
+    if rule in ("matrix", "entries"):
+        domain, leaves, basis = bounded(d, rule, proves, used, witness, claimed)
+        return replace(line, domain=domain, on_set=True, leaves=leaves, basis=basis)
+    if rule == "stretch":
+        return replace(line, domain=stretched(d, proves, used, witness, claimed), on_set=True)
+    if rule == "componentwise":
+        return replace(line, domain=componentwise(d, proves, used, witness, claimed))
+    if rule == "invariant-rows":
+        return replace(line, domain=invariant_rows(d, proves, used, claimed))
+    if several and rule in ("largest-ball", "smaller-ball"):
+        return replace(line, domain=ball(d, rule, proves, used, claimed))
+    if several and rule == "invariant-region":
+        return replace(line, domain=invariant_region(d, proves, used))
+    if several and rule == "slope":
+        return replace(line, domain=slope(d, proves, used, claimed))
+    if several and rule in ("split", "curve", "shells", "orbit", "path"):
+        raise Rejected(f"{rule}: known for a single state only")
+    return None
+
+
+def of_set(used: list[Line]) -> tuple[Domain, Metric]:
+    if len(used) != 1 or used[0].domain is None or used[0].domain.metric is None:
+        raise Rejected("uses: the one line that gives the set")
+    return used[0].domain, used[0].domain.metric
+
+
+def bounded(
+    d: Derivation, rule: str, proves: str, used: list[Line], witness: dict[str, Any], claimed: Quantities
+) -> tuple[Domain, int, tuple[Matrix, Matrix] | None]:
+    """Rules matrix and entries: what holds at every leaf. Returns the set, the leaves and the basis (or None)."""
+    used, flows = parted(used)
+    domain, norm = of_set(used)
+    table = Table(d, proves, domain, witness["bits"], flows)
+    if rule == "matrix":
+        count = 0
+        for leaf in table.leaves(witness["trees"]):
+            count += 1
+            if not norm_at_most(norm, leaf, claimed["norm"]):
+                raise Rejected(f"{proves}: a leaf is not shown to stay within the norm")
+        return domain, count, None
+    basis = based(d, witness)
+    most, count = largest(table.leaves(witness["trees"]), basis, proves)
+    for key, x in keyed(most).items():
+        if not claimed.get(key, Fraction(-1)) >= x:
+            raise Rejected(f"{proves}: entry {key} is less than what the leaves show")
+    if set(claimed) != set(keyed(most)):
+        raise Rejected(f"{proves}: one conclusion an entry")
+    return domain, count, basis
+
+
+def based(d: Derivation, witness: dict[str, Any]) -> tuple[Matrix, Matrix]:
+    norm = metric("polytope", matrix(witness["rows"], "rows"), matrix(witness["inverse"], "inverse"), len(d.states))
+    return norm.rows, norm.inverse
+
+
+def largest(leaves: Iterable[Leaf], basis: tuple[Matrix, Matrix], proves: str) -> tuple[Matrix, int]:
+    """The largest entries over all leaves in a basis, and how many leaves there are."""
+    rows, inverse = basis
+    found: Matrix = ()
+    count = 0
+    for leaf in leaves:
+        count += 1
+        here = entries(rows, inverse if proves == "slopes" else None, leaf)
+        found = tuple(tuple(map(max, a, b)) for a, b in zip(found, here, strict=True)) if found else here
+    return found, count
+
+
+def keyed(m: Matrix) -> dict[str, Fraction]:
+    return {f"{i},{j}": x for i, row in enumerate(m, 1) for j, x in enumerate(row, 1)}
+
+
+def stretched(d: Derivation, proves: str, used: list[Line], witness: dict[str, Any], claimed: Quantities) -> Domain:
+    """Rule stretch: a direction that a Jacobian stretches by no less, or a miss no shorter (several.md (4))."""
+    used, flows = parted(used)
+    domain, norm = of_set(used)
+    table = Table(d, proves, domain, witness["bits"], flows)
+    middle, half = middle_and_half(table.at(witness["at"]))
+    direction = numbers(witness["direction"], "direction", len(middle[0]))
+    image = [sum((x * y for x, y in zip(row, direction, strict=True)), Fraction(0)) for row in middle]
+    off = [sum((x * abs(y) for x, y in zip(row, direction, strict=True)), Fraction(0)) for row in half]
+    size = norm.most(direction) if proves == "slopes" else abs(direction[0])
+    if not size > 0 or not claimed["lower"] * size <= norm.least(image) - norm.length(off):
+        raise Rejected(f"{proves}: the direction is not shown to be stretched by so much")
+    return domain
+
+
+def movements(d: Derivation) -> list[tuple[str, str]]:
+    return [(s, h) for s in d.states for h in d.moving(s)]
+
+
+def moved(d: Derivation, lines: list[Line]) -> list[Fraction]:
+    """How far held quantities may move the target of each state in a step: proofs/slope.md (3)."""
+    found = dict.fromkeys(d.states, Fraction(0))
+    for (s, h), line in zip(movements(d), lines, strict=True):
+        found[s] += magnitude(line) * d.change(h)[1]
+    return list(found.values())
+
+
+def slope(d: Derivation, proves: str, used: list[Line], claimed: Quantities) -> Domain:
+    """proofs/several.md (2): gain and residual in the metric."""
+    ranges = [("range", f"target-slope[{s},{h}]") for s, h in movements(d)]
+    require(proves, "slope", used, [("matrix", "slopes"), ("matrix", "misses"), *ranges])
+    domain = used[0].domain
+    if domain is None or domain.metric is None or used[1].domain != domain:
+        raise Rejected("the residual refers to another set")
+    residual = used[1].concludes["norm"] + domain.metric.length(moved(d, used[2:]))
+    if not (claimed["gain"] >= used[0].concludes["norm"] and claimed["residual"] >= residual):
+        raise Rejected("gain or residual: less than what the lines used show")
+    return domain
+
+
+def componentwise(d: Derivation, proves: str, used: list[Line], witness: dict[str, Any], claimed: Quantities) -> Domain:
+    """proofs/several.md (3): K, residual and p > K p entry by entry, in a basis; a bound for each state."""
+    ranges = [("range", f"target-slope[{s},{h}]") for s, h in movements(d)]
+    found = [("entries", "slopes"), ("entries", "misses"), *ranges]
+    if proves != "componentwise" or [x.proves for x in used[:1]] != ["invariant"]:
+        raise Rejected("componentwise rests on the invariant set, then entries")
+    require(proves, "componentwise", used[1:], found)
+    slopes, misses, domain = used[1], used[2], used[0].domain
+    if domain is None or slopes.domain != domain or misses.domain != domain:
+        raise Rejected("entries of another set")
+    if slopes.basis is None or slopes.basis != misses.basis:
+        raise Rejected("entries in different bases")
+    k, residual = compared(d, slopes, misses, used[3:])
+    p, b = (numbers(witness[key], key, len(k)) for key in ("p", "b"))
+    if not comparison(k, residual, p, b):
+        raise Rejected("p, b: K p < p, K b + residual <= b and p > 0 are not all met")
+    if set(claimed) != set(d.states):
+        raise Rejected("concludes: a bound for each state")
+    for s, row in zip(d.states, slopes.basis[1], strict=True):
+        if not claimed[s] >= sum(abs(x) * y for x, y in zip(row, b, strict=True)):
+            raise Rejected(f"{s}: less than what the comparison shows")
+    return domain
+
+
+def compared(d: Derivation, slopes: Line, misses: Line, moves: list[Line]) -> tuple[Matrix, list[Fraction]]:
+    """K and the residual of a comparison, movements of the target taken in."""
+    rows = slopes.basis[0] if slopes.basis is not None else ()
+    m, far = len(rows), moved(d, moves)
+    k = tuple(tuple(slopes.concludes[f"{i},{j}"] for j in range(1, m + 1)) for i in range(1, m + 1))
+    shifts = [sum((abs(x) * y for x, y in zip(row, far, strict=True)), Fraction(0)) for row in rows]
+    return k, [misses.concludes[f"{i},1"] + shift for i, shift in enumerate(shifts, 1)]
+
+
+def invariant_rows(d: Derivation, proves: str, used: list[Line], claimed: Quantities) -> Domain:
+    """proofs/several.md (3): K R + residual <= R in every row, in the basis that the ball is a box of."""
+    ranges = [("range", f"target-slope[{s},{h}]") for s, h in movements(d)]
+    if proves != "invariant" or [x.proves for x in used[:1]] != ["ball"]:
+        raise Rejected("invariant rests on the ball, then entries")
+    require(proves, "invariant", used[1:], [("entries", "slopes"), ("entries", "misses"), *ranges])
+    domain = used[0].domain
+    if domain is None or domain.metric is None or domain.metric.kind == "ellipsoid":
+        raise Rejected("the ball is no box in any basis")
+    basis = domain.metric.rows, domain.metric.inverse
+    if any(line.domain != domain or line.basis != basis for line in used[1:3]):
+        raise Rejected("entries of another set, or in another basis")
+    k, residual = compared(d, used[1], used[2], used[3:])
+    if not all(sum(row) * domain.radius + e <= domain.radius for row, e in zip(k, residual, strict=True)):
+        raise Rejected("a row exceeds the radius")
+    return domain

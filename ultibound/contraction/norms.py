@@ -1,0 +1,264 @@
+"""The supremum of a norm ‖V A L‖ over boxes: subdivision, worst boxes first, by the affine part of A and its corners.
+
+Floating point: what leaves this module are witnesses, a splitting tree a top cell and a point with the direction that
+is stretched most (proofs/matrix.md (2), proofs/several.md (4)).
+"""
+
+from __future__ import annotations
+
+import time
+from collections.abc import Callable, Sequence
+from dataclasses import dataclass
+from fractions import Fraction
+from itertools import product
+
+import numpy as np
+
+from ..bounding.evaluate import Runner, to_float
+from ..bounding.intervals import Floats
+from ..bounding.search import SHARE, Effort
+from ..claim.obligations import Obligation, Variable, together
+
+BATCH = 64
+MOST_SLOPES = 8  # as in the checker: further ones count as rest
+CORNERS = 2_000_000  # numbers of all corners of a batch at once
+FINEST = 2.0**-40  # of a cell, below which no box is bisected
+
+
+@dataclass(frozen=True, slots=True)
+class Entry:
+    """An entry of the matrix, ready to run; `columns`: where its variables stand among those of all entries."""
+
+    obligation: Obligation
+    runner: Runner
+    columns: list[int]
+
+
+@dataclass(frozen=True, slots=True)
+class Norm:
+    """‖e‖ = |V e| in floating point; without an `inverse` L, of vectors."""
+
+    rows: Floats
+    inverse: Floats | None
+    round: bool  # Euclidean length, else the largest magnitude
+
+
+@dataclass(frozen=True, slots=True)
+class Stretched:
+    """Trees, estimates of the supremum from above and below, and where the lower one is taken."""
+
+    trees: tuple[str, ...]
+    leaves: int
+    upper: float
+    lower: float
+    point: dict[str, Fraction]
+    direction: tuple[float, ...]
+    stopped: str
+
+
+@dataclass(frozen=True, slots=True)
+class Affine:
+    """A over boxes: centre (boxes, n, c), slopes times half widths (boxes, variables, n, c), rest (boxes, n, c)."""
+
+    centre: Floats
+    slopes: Floats
+    rest: Floats
+    score: Floats  # (boxes, variables): what bisecting a variable may gain
+
+    def only(self, k: int) -> Affine:
+        one = slice(k, k + 1)
+        return Affine(self.centre[one], self.slopes[one], self.rest[one], self.score[one])
+
+
+class Matrices:
+    """The entries of a Jacobian or of misses over boxes of the variables of all of them."""
+
+    def __init__(
+        self, rows: Sequence[Sequence[tuple[Obligation, Runner]]], into: Callable[[Floats], Floats] = lambda x: x
+    ) -> None:
+        """`into` moves points of the boxes into the set, where that is smaller."""
+        self.into = into
+        self.variables: list[Variable] = together([o for row in rows for o, _ in row])
+        rank = {v.name: k for k, v in enumerate(self.variables)}
+        self.rows = [[Entry(o, r, [rank[v.name] for v in o.variables]) for o, r in row] for row in rows]
+
+    def affine(self, low: Floats, high: Floats) -> Affine:
+        boxes, count = low.shape
+        shape = boxes, len(self.rows), len(self.rows[0])
+        middle, half = (low + high) / 2, (high - low) / 2
+        centre, rest = np.zeros(shape), np.zeros(shape)
+        slopes, score = np.zeros((boxes, count, *shape[1:])), np.zeros((boxes, count))
+        with np.errstate(invalid="ignore", over="ignore"):
+            for i, row in enumerate(self.rows):
+                for j, e in enumerate(row):
+                    run = e.runner(low[:, e.columns], high[:, e.columns])
+                    at = middle[:, e.columns]
+                    here = e.runner(at, at, gradient=False)
+                    r = half[:, e.columns]
+                    linear = (run.gradient_low + run.gradient_high) / 2 * r
+                    left = np.where(r > 0, (run.gradient_high - run.gradient_low) / 2 * r, 0.0)
+                    whole = np.where(r > 0, np.maximum(abs(run.gradient_low), abs(run.gradient_high)) * r, 0.0)
+                    total = left.sum(axis=1) + (here.high - here.low) / 2
+                    direct = (run.high - run.low) / 2 <= total
+                    if e.obligation.by:
+                        direct |= run.split | run.open()
+                    direct |= ~np.isfinite(total) | ~np.isfinite(linear).all(axis=1)
+                    centre[:, i, j] = np.where(direct, (run.low + run.high) / 2, (here.low + here.high) / 2)
+                    rest[:, i, j] = np.where(direct, (run.high - run.low) / 2, total)
+                    slopes[:, e.columns, i, j] = np.where(direct[:, None], 0.0, linear)
+                    score[:, e.columns] += np.where(direct[:, None], whole, left)
+        return Affine(centre, slopes, rest, score)
+
+    def at(self, x: Floats) -> Floats:
+        """The matrices at points (points, variables), as (points, n, c)."""
+
+        def entry(e: Entry) -> Floats:
+            return e.runner(x[:, e.columns], x[:, e.columns], gradient=False).low
+
+        return np.stack([np.stack([entry(e) for e in row], axis=1) for row in self.rows], axis=1)
+
+
+def over_boxes(norm: Norm, a: Affine) -> tuple[Floats, Floats]:
+    """Upper estimates of the norm over boxes, and the signs (boxes, variables) of the corner it is largest at."""
+    boxes, count = a.score.shape
+    right = norm.inverse if norm.inverse is not None else np.eye(a.centre.shape[2])
+    centre, slopes = norm.rows @ a.centre @ right, norm.rows @ a.slopes @ right
+    rest = np.abs(norm.rows) @ a.rest @ np.abs(right)
+    size = np.abs(slopes).sum(axis=(2, 3))
+    order = np.argsort(-size.max(axis=0, initial=0.0), kind="stable")
+    moving = [int(k) for k in order if size[:, k].max(initial=0.0) > 0]
+    for k in moving[MOST_SLOPES:]:
+        rest = rest + np.abs(slopes[:, k])
+    moving = moving[:MOST_SLOPES]
+    signs = np.array(list(product((1.0, -1.0), repeat=len(moving)))).reshape(2 ** len(moving), len(moving))
+    found, where = np.full(boxes, -np.inf), np.zeros((boxes, count))
+    rows = np.arange(boxes)
+    step = max(1, CORNERS // max(1, centre[0].size * boxes))
+    for first in range(0, len(signs), step):
+        some = signs[first : first + step]
+        corners = centre[:, None] + np.einsum("sk,bkij->bsij", some, slopes[:, moving])
+        each = _length(corners) if norm.round else _rows(corners, rest)
+        best = np.argmax(each, axis=1)
+        better = np.asarray(each[rows, best] > found)
+        found = np.where(better, each[rows, best], found)
+        chosen = np.zeros((boxes, count))
+        chosen[:, moving] = some[best]
+        where = np.where(better[:, None], chosen, where)
+    if norm.round:
+        gram = rest.transpose(0, 2, 1) @ rest
+        spread = np.minimum(np.trace(gram, axis1=1, axis2=2), np.abs(gram).sum(axis=2).max(axis=1))
+        found = found + np.sqrt(spread)
+    return np.where(np.isfinite(found), found, np.inf), where
+
+
+def _rows(corners: Floats, rest: Floats) -> Floats:
+    """Largest row sums (boxes, corners) of magnitudes, the rest added."""
+    found: Floats = (np.abs(corners).sum(axis=3) + rest.sum(axis=2)[:, None]).max(axis=2)
+    return found
+
+
+def _length(m: Floats) -> Floats:
+    """Largest singular values; inf where a matrix is not finite."""
+    good = np.asarray(np.isfinite(m).all(axis=(-2, -1)))
+    found: Floats = np.linalg.norm(np.where(good[..., None, None], m, 0.0), 2, axis=(-2, -1))
+    return np.where(good, found, np.inf)
+
+
+def size(norm: Norm, m: Floats) -> Floats:
+    """The norm of matrices (points, n, c)."""
+    b = norm.rows @ m @ (norm.inverse if norm.inverse is not None else np.eye(m.shape[2]))
+    return _length(b) if norm.round else np.abs(b).sum(axis=2).max(axis=1)
+
+
+def direction(norm: Norm, m: Floats) -> tuple[float, ...]:
+    """The vector that a matrix (n, c) stretches most."""
+    if norm.inverse is None:
+        return (1.0,)
+    b = norm.rows @ m @ norm.inverse
+    row = b[int(np.argmax(np.abs(b).sum(axis=1)))]
+    y = np.linalg.svd(b)[2][0] if norm.round else np.where(row < 0, -1.0, 1.0)
+    return tuple(float(x) for x in norm.inverse @ y)
+
+
+def stretched(matrices: Matrices, norm: Norm, effort: Effort) -> Stretched:
+    """Witnesses for the supremum of the norm, within the gap of a value taken or as close as the limits allow."""
+    tops = list(product(*(v.cells for v in matrices.variables)))
+    shape = len(tops), len(matrices.variables)
+    low = np.array([[to_float(c[0]) for c in top] for top in tops]).reshape(shape)
+    high = np.array([[to_float(c[1]) for c in top] for top in tops]).reshape(shape)
+    inside = np.array([[to_float(v.inside[0]), to_float(v.inside[1])] for v in matrices.variables]).reshape(-1, 2)
+    least = (high - low).max(axis=0, initial=0.0) * FINEST
+    upper, score = np.zeros(0), np.zeros((0, shape[1]))
+    split, child = [-1] * len(tops), [-1] * len(tops)
+    best, inner, at, stopped, done = -np.inf, -np.inf, np.zeros(shape[1]), "", 0
+    fixed = np.array([v.listed for v in matrices.variables], bool)
+    while True:
+        for first in range(done, len(low), BATCH):
+            part = slice(first, first + BATCH)
+            a = matrices.affine(low[part], high[part])
+            found, where = over_boxes(norm, a)
+            upper, score = np.concatenate([upper, found]), np.concatenate([score, a.score])
+            middle, half = (low[part] + high[part]) / 2, (high[part] - low[part]) / 2
+            points = np.where(fixed, middle, np.clip(middle + where * half, inside[:, 0], inside[:, 1]))
+            best = max(best, float(_finite(size(norm, matrices.at(points))).max()))
+            points = matrices.into(points)
+            taken = _finite(size(norm, matrices.at(points)))
+            k = int(np.argmax(taken))
+            if taken[k] > inner:
+                inner, at = float(taken[k]), points[k]
+        done = len(low)
+        leaf = np.asarray(np.array(split, dtype=np.int64) < 0)
+        ceiling = max(best, 0.0) + max(SHARE * effort.gap * max(best, 0.0), effort.floor, 1e-6 * effort.gap)
+        open_ = np.flatnonzero(leaf & (upper > ceiling))
+        leaves = int(leaf.sum())
+        effort.watch(leaves, float(upper[leaf].max()))
+        if not len(open_):
+            break
+        room = effort.cells - leaves
+        if room <= 0 or time.monotonic() > effort.until:
+            stopped = "cells" if room <= 0 else "seconds"
+            break
+        worst = open_[np.argsort(-upper[open_], kind="stable")][: min(BATCH, room)]
+        wide = np.where(high[worst] - low[worst] > least, score[worst], -1.0)
+        axis = np.argmax(wide, axis=1)
+        usable = wide[np.arange(len(worst)), axis] > 0
+        if not usable.any():
+            stopped = "precision"
+            break
+        for k, v in zip(worst[usable], axis[usable], strict=True):
+            split[k], child[k] = int(v), len(split)
+            split += [-1, -1]
+            child += [-1, -1]
+            cut = (low[k, v] + high[k, v]) / 2
+            below, above = high[k].copy(), low[k].copy()
+            below[v], above[v] = cut, cut
+            low, high = np.vstack([low, low[k], above]), np.vstack([high, below, high[k]])
+    trees = tuple(_written(split, child, k) for k in range(len(tops)))
+    point = {v.name: _exact(v, x) for v, x in zip(matrices.variables, at, strict=True)}
+    vector = direction(norm, matrices.at(at[None])[0])
+    return Stretched(trees, leaves, float(upper[leaf].max()), inner, point, vector, stopped)
+
+
+def _finite(x: Floats) -> Floats:
+    found: Floats = np.where(np.isfinite(x), x, -np.inf)
+    return found
+
+
+def _exact(v: Variable, x: float) -> Fraction:
+    """A value a point may take: of a list the nearest, else within the ends for points."""
+    if v.listed:
+        return min(((c[0] + c[1]) / 2 for c in v.cells), key=lambda c: abs(to_float(c) - x))
+    return min(max(Fraction(x), v.inside[0]), v.inside[1])
+
+
+def _written(split: list[int], child: list[int], root: int) -> str:
+    """Preorder: a number bisects the variable of that rank, c is a leaf by its affine part."""
+    out, stack = [], [root]
+    while stack:
+        k = stack.pop()
+        if split[k] < 0:
+            out.append("c")
+        else:
+            out.append(str(split[k]))
+            stack += [child[k] + 1, child[k]]
+    return " ".join(out)

@@ -1,0 +1,340 @@
+"""Claims of several states: targets → set → metric → what contracts in it → requirements (proofs/several.md)."""
+
+from __future__ import annotations
+
+from collections.abc import Iterator
+from contextlib import suppress
+from fractions import Fraction
+from typing import TYPE_CHECKING
+
+import numpy as np
+
+from .bounding.evaluate import to_float
+from .bounding.intervals import Floats
+from .bounding.search import Effort
+from .certificate.enclosing import BITS, Proved
+from .certificate.lines import downward, upward
+from .certificate.norms import NormWriter, moves_of
+from .certificate.several import SeveralRemarks
+from .checker.matrices import Leaf, Matrix, Metric, metric
+from .checker.reals import Undefined
+from .checker.rules import Rejected
+from .claim import ClaimError
+from .claim.constants import constant
+from .claim.obligations import RANGED, Domain, Obligation
+from .contraction.metrics import Proposal, proposals
+from .contraction.norms import Matrices, Norm, Stretched, stretched
+from .contraction.samples import drawn
+from .prove import COARSE, DECIDED, Attempt
+
+if TYPE_CHECKING:
+    from .certificate.lines import Writer
+
+SAMPLES = 300
+FEW = 3000  # leaves of a search that only compares metrics
+SPARE = 1 - 1e-9
+MOST_BASES = 2  # for comparisons, beside the states and the metric itself
+LOOKS = 2  # at samples: of the region, then of the ball found
+SHARES = (0.7, 0.5, 0.35, 0.25, 0.15, 0.1, 0.05, 0.02)  # of the largest ball, where that is not kept
+
+
+class SeveralAttempt(Attempt):
+    """One pass through the proof of a claim of several states at one gap."""
+
+    writes: type[Writer] = NormWriter
+    writer: NormWriter
+    chosen: Proposal
+    norm: Metric
+    domain: Domain
+
+    def _prove(self) -> None:
+        """Lines for the set and its metric, gain and residual, bounds by state, and the requirements."""
+        o, w = self.obligations, self.writer
+        self._flow()
+        self.leaves: dict[str, list[Leaf]] = {}
+        self.targets = [self._target(s) for s in o.states]
+        images = self._images()
+        self._settled(images)
+        number = w.metric(self.chosen.kind, self.chosen.rows, self.chosen.inverse)
+        lines = [t.line for t in self.targets]
+        ball = w.about(number, lines, self.domain.radius)
+        found = w.proof.lines[ball].domain
+        on = ball
+        if images is not None:
+            on = w.append("invariant-region", "invariant", [number, *lines, *images], {}, {})
+        elif found is not None:
+            self.domain = self._ball(self.norm, found.radius, found.beyond)
+        for k in range(1, len(o.motion.positive) + 1 if o.motion is not None else 1):
+            self.ranges.enclose(o.support(k, self.domain), on, gap=DECIDED, side=-1)
+        moves = self._movements()
+        slopes, misses = self._norm("slopes", on), self._norm("misses", on)
+        pair = self._slope(slopes, misses, moves)
+        tables = self._entries(slopes, misses, on)
+        invariant = on if images is not None else self._kept(ball, pair, tables, moves)
+        if invariant is not None and pair is not None:
+            self._bound(invariant, pair)
+        if invariant is not None and moves is not None:
+            for table in tables:
+                w.componentwise(invariant, *table, moves)
+        for k, r in enumerate(self.claim.requirements, 1):
+            if r.kind in RANGED and not self.variant:
+                self._range(k, self.domain, on)
+
+    def _images(self) -> list[int] | None:
+        """The lines that the region is mapped into itself, state by state, where it is: invariant-set.md (1)."""
+        found: dict[str, Proved] = {}
+        for gap in (COARSE, self.gap):
+            for s in self.obligations.states:
+                image = self.ranges.enclose(self.obligations.image(s), None, points=True, gap=gap)
+                if image is None:
+                    return None
+                found[s] = image
+                low, high = self.writer.derivation.region(s)[1]
+                if image.least < low or image.most > high:  # a point leaves it
+                    return None
+            inner = {s: self.writer.derivation.region(s)[1] for s in found}
+            if all(inner[s][0] <= x.lower and x.upper <= inner[s][1] for s, x in found.items()):
+                return [x.line for x in found.values()]
+        self.near_region = True
+        return None
+
+    def _settled(self, images: list[int] | None) -> None:
+        """The metric, and the set it is one of: `chosen`, `norm`, `domain`."""
+        n = len(self.obligations.states)
+        spans = tuple((t.lower, t.upper) for t in self.targets)
+        domain = Domain("region", Fraction(0), spans[0], targets=spans)
+        best: tuple[float, Proposal, Metric, Domain] | None = None
+        for _ in range(1 if images is not None else LOOKS):
+            for p in self._proposed(domain):
+                norm = metric(p.kind, p.rows, p.inverse, n)
+                ball = self._ball(norm, self._largest(norm))
+                if images is not None:
+                    self.chosen, self.norm, self.domain = (
+                        p,
+                        norm,
+                        Domain("region", ball.radius, spans[0], targets=spans),
+                    )
+                    return
+                size = self._size(p, ball)
+                if best is None or size < best[0]:
+                    best = size, p, norm, ball
+                if size < np.inf:
+                    break
+            if best is not None and best[0] < np.inf:
+                break
+            domain = best[3] if best is not None else domain
+        if best is None:
+            identity = tuple(tuple(Fraction(int(i == j)) for j in range(n)) for i in range(n))
+            p = Proposal("box", identity, identity, np.inf, np.inf, 0.0)
+            norm = metric("box", identity, identity, n)
+            best = np.inf, p, norm, self._ball(norm, self._largest(norm))
+        _, self.chosen, self.norm, self.domain = best
+        if best[0] == np.inf:
+            self._shrunk()
+
+    def _shrunk(self) -> None:
+        """A smaller ball that is kept, if the largest is not."""
+        for share in SHARES:
+            smaller = self._ball(self.norm, Fraction(f"{to_float(self.domain.radius) * share:.4g}"))
+            if self._size(self.chosen, smaller) < np.inf:
+                self.domain = smaller
+                return
+
+    def _proposed(self, domain: Domain) -> list[Proposal]:
+        """Metrics proposed from samples of Jacobians and misses over a set (estimates)."""
+        rng = np.random.default_rng(0)
+        slopes, misses = self._matrices("slopes", domain), self._matrices("misses", domain)
+        jacobians, missed = (self._sampled(m, rng) for m in (slopes, misses))
+        room = np.array([to_float(x) for x in self._rooms()])
+        claim = self.claim
+        kind, weights = claim.metric, None
+        if kind == "box" or claim.weights:
+            one = (Fraction(1), Fraction(1))
+            ends = [
+                constant(claim.weights[s], claim.values) if s in claim.weights else one for s in self.obligations.states
+            ]
+            kind, weights = "box", tuple(x[0] for x in ends)
+        self.others = proposals(jacobians, missed[:, :, 0], room)
+        return proposals(jacobians, missed[:, :, 0], room, kind, weights) if kind != "auto" else self.others
+
+    def _sampled(self, matrices: Matrices, rng: np.random.Generator) -> Floats:
+        at = drawn(Obligation("samples", 0, "", tuple(matrices.variables), False), SAMPLES, rng)
+        found = matrices.at(matrices.into(at))
+        good: Floats = found[np.isfinite(found).all(axis=(1, 2))]
+        return good
+
+    def _rooms(self) -> list[Fraction]:
+        """How far the target of each state is from the edge of its region, at least."""
+        regions = [self.writer.derivation.region(s)[1] for s in self.obligations.states]
+        return [min(t.lower - low, high - t.upper) for t, (low, high) in zip(self.targets, regions, strict=True)]
+
+    def _largest(self, norm: Metric) -> Fraction:
+        found = min(x / norm.support(i) for i, x in enumerate(self._rooms()))
+        if found < 0:
+            s = self.obligations.states[min(range(len(self.targets)), key=lambda i: self._rooms()[i])]
+            place = self.claim.place, f"target.{s}"
+            raise ClaimError.of(*place, "cannot be shown to lie inside the region; widen the region a little")
+        return Fraction(downward(found))
+
+    def _ball(self, norm: Metric, radius: Fraction, beyond: Fraction = Fraction(0)) -> Domain:  # type: ignore[override]
+        spans = tuple((t.lower, t.upper) for t in self.targets)
+        wide = tuple(norm.support(i) for i in range(len(spans)))
+        return Domain("ball", radius, spans[0], beyond, spans, wide)
+
+    def _matrices(self, proves: str, domain: Domain, norm: Metric | None = None) -> Matrices:
+        """The entries of a matrix over a set, ready to run."""
+        o = self.obligations
+        rows = [[o.slope(domain, s, x) for x in o.states] if proves == "slopes" else [o.miss(s)] for s in o.states]
+        ready = [[(x, self.ranges.runner(x, False)) for x in row] for row in rows]
+        if domain.kind != "ball" or norm is None:
+            return Matrices(ready)
+        names = [v.name for v in Matrices(ready).variables]
+        return Matrices(ready, lambda x: self._into(x, names, domain, norm))
+
+    def _into(self, x: Floats, names: list[str], domain: Domain, norm: Metric) -> Floats:
+        """Points moved towards the target until they lie in the ball."""
+        v, centre = floats(norm.rows), [(to_float(a) + to_float(b)) / 2 for a, b in domain.targets]
+        error, places = np.zeros((len(x), len(centre))), []
+        for i, s in enumerate(self.obligations.states):
+            for name, middle in ((s, centre[i]), (f"error({s})", 0.0)):
+                if name in names:
+                    k = names.index(name)
+                    error[:, i] = x[:, k] - middle
+                    places.append((k, i, middle))
+        size = np.linalg.norm(error @ v.T, axis=1) if norm.kind == "ellipsoid" else np.abs(error @ v.T).max(axis=1)
+        share = np.minimum(1.0, to_float(domain.radius) * SPARE / np.maximum(size, 1e-300))
+        moved = x.copy()
+        for k, i, middle in places:
+            moved[:, k] = middle + error[:, i] * share
+        return moved
+
+    def _searched(self, proves: str, domain: Domain, norm: Metric, gap: float, cells: int) -> Stretched:
+        def watch(leaves: int, high: float) -> None:
+            self.watch(f"{proves} of {len(self.obligations.states)} states", leaves, high)
+
+        matrices = self._matrices(proves, domain, norm)
+        form = Norm(floats(norm.rows), floats(norm.inverse) if proves == "slopes" else None, norm.kind == "ellipsoid")
+        try:
+            return stretched(matrices, form, Effort(gap, cells, self.until, watch))
+        except KeyboardInterrupt:
+            self.ranges.interrupt()
+            return stretched(matrices, form, Effort(gap, cells, self.until, watch))
+
+    def _size(self, p: Proposal, ball: Domain) -> float:
+        """The largest share of its room that a state's bound takes; inf where the ball is not kept (estimates)."""
+        norm = metric(p.kind, p.rows, p.inverse, len(self.obligations.states))
+        k = self._searched("slopes", ball, norm, COARSE, FEW).upper
+        if not k < 1:
+            return np.inf
+        miss = self._searched("misses", ball, norm, COARSE, FEW).upper + self._shift(norm)
+        radius = to_float(ball.radius)
+        if not k * radius + miss <= radius * SPARE:
+            return np.inf
+        shares = [to_float(norm.support(i)) / max(to_float(x), 1e-300) for i, x in enumerate(self._rooms())]
+        return miss / (1 - k) * max(shares)
+
+    def _shift(self, norm: Metric) -> float:
+        """How far held quantities move the target in a step, in a norm (an estimate)."""
+        far = dict.fromkeys(self.obligations.states, 0.0)
+        for s, h in moves_of(self.writer):
+            found = self.ranges.search(self.obligations.target_slope(h, s), True, COARSE)
+            far[s] += max(abs(found.upper), abs(found.lower)) * to_float(self.obligations.change(h))
+        return to_float(norm.length([Fraction(x) for x in far.values()]))
+
+    def _movements(self) -> list[int] | None:
+        found = [self.ranges.enclose(self.obligations.target_slope(h, s), None, True) for s, h in moves_of(self.writer)]
+        return None if any(x is None for x in found) else [x.line for x in found if x is not None]
+
+    def _norm(self, proves: str, on: int) -> tuple[int, tuple[str, ...], int] | None:
+        """The line of a norm over the set, with a stretch that attains nearly as much; its trees and bits."""
+        w, share = self.writer, 1.0
+        bits = 0 if w.exact(proves, on) else BITS
+        for _ in range(4):
+            found = self._searched(proves, self.domain, self.norm, self.gap * share, self.claim.cells)
+            try:
+                leaves = w.leaves(proves, found.trees, bits, on)
+                line = w.matrix(proves, found.trees, bits, on, leaves)
+            except (Undefined, Rejected) as why:
+                self.ranges.limits[proves] = str(why)
+                if found.stopped:
+                    return None
+                share /= 16
+                continue
+            self.leaves[proves] = leaves
+            self.ranges.limits[proves] = found.stopped
+            upper = to_float(w.proof.lines[line].concludes["norm"])
+            if found.stopped or upper - found.upper <= self.gap * max(found.upper, 1e-300) or share < 0.1:
+                break
+            share /= 8
+        else:
+            return None
+        with suppress(Undefined, Rejected, ZeroDivisionError):
+            w.stretch(proves, found.point, found.direction, bits, on)
+        return line, found.trees, bits
+
+    def _slope(  # type: ignore[override]
+        self,
+        slopes: tuple[int, tuple[str, ...], int] | None,
+        misses: tuple[int, tuple[str, ...], int] | None,
+        moves: list[int] | None,
+    ) -> int | None:
+        """Gain and residual in the metric: proofs/several.md (2)."""
+        if slopes is None or misses is None or moves is None:
+            return None
+        w, far = self.writer, dict.fromkeys(self.obligations.states, Fraction(0))
+        for (s, h), n in zip(moves_of(w), moves, strict=True):
+            ends = w.proof.lines[n].concludes
+            far[s] += max(abs(ends["lower"]), abs(ends["upper"])) * w.derivation.change(h)[1]
+        residual = w.proof.lines[misses[0]].concludes["norm"] + self.norm.length(list(far.values()))
+        concludes = {"gain": upward(w.proof.lines[slopes[0]].concludes["norm"]), "residual": upward(residual)}
+        return w.append("slope", "slope", [slopes[0], misses[0], *moves], {}, concludes)
+
+    def _entries(
+        self, slopes: tuple[int, tuple[str, ...], int] | None, misses: tuple[int, tuple[str, ...], int] | None, on: int
+    ) -> list[tuple[int, int]]:
+        """Lines of entries, of slopes and misses, a basis: proofs/several.md (3)."""
+        found = []
+        for basis in self._bases() if slopes is not None and misses is not None else ():
+            pair = []
+            for proves, known in (("slopes", slopes), ("misses", misses)):
+                if known is not None:
+                    leaves = self.leaves[proves]
+                    pair.append(self.writer.entries(proves, known[1], known[2], on, leaves, basis))
+            found.append((pair[0], pair[1]))
+        return found
+
+    def _bases(self) -> Iterator[tuple[Matrix, Matrix]]:
+        """Bases for a comparison: the states themselves, the rows of the metric, the other metrics proposed."""
+        n = len(self.obligations.states)
+        identity = tuple(tuple(Fraction(int(i == j)) for j in range(n)) for i in range(n))
+        seen = [identity]
+        yield identity, identity
+        others = [(p.rows, p.inverse) for p in self.others if p.kind == "polytope"][:MOST_BASES]
+        for rows, inverse in [(self.norm.rows, self.norm.inverse), *others]:
+            if rows not in seen:
+                seen.append(rows)
+                yield rows, inverse
+
+    def _kept(self, ball: int, pair: int | None, tables: list[tuple[int, int]], moves: list[int] | None) -> int | None:
+        """The ball is mapped into itself: by its norm, or row by row in its own basis."""
+        w = self.writer
+        if pair is not None:
+            try:
+                return w.append("invariant-ball", "invariant", [ball, pair], {}, {})
+            except Rejected:
+                pass
+        for table in tables if moves is not None else ():
+            try:
+                return w.append("invariant-rows", "invariant", [ball, *table, *(moves or [])], {}, {})
+            except Rejected:
+                continue
+        return None
+
+    def _remarks(self) -> list[tuple[str | None, bool]]:
+        return SeveralRemarks(
+            self.claim, self.obligations, self.results, self.ranges.limits, self.ranges.interrupted
+        ).all()
+
+
+def floats(m: Matrix) -> Floats:
+    return np.array([[to_float(x) for x in row] for row in m])
