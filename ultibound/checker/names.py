@@ -31,6 +31,7 @@ class Names:
         self.landing = landing
         self.terms, self.statement, self.cut, self.rank = terms, statement, cut, dict(bound)
         self.open: set[str] = set()  # rates that are being worked out
+        self.rated: dict[int, int] = {}  # what a time rate was asked of, and it
         if cut in bound:
             self.rank[cut] = terms.put("mark", (bound[cut],), cut)
         self.text: dict[str, Expression] = {**statement.constants, **statement.gains, **stance.define}
@@ -115,6 +116,7 @@ class Names:
         for hazard, k in hazards(self.terms, root).items():  # what is not defined has no rate either
             if hazard not in known:
                 total = put("add", (total, put("mul", (put("number", (), Fraction(0)), k))))
+        self.rated[root] = total
         return total
 
 

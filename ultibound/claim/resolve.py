@@ -33,6 +33,7 @@ class Scope:
     ) -> None:
         """`landing` tells what a gate of the stance's time is at touchdown, where there are dynamics."""
         self._landing, self._open = landing, set[str]()
+        self.rated: dict[int, int] = {}  # what a time rate was asked of, and it
         self.graph, self.claim, self.stance, self.cut = graph, claim, stance, cut
         self._known: dict[str, int] = dict(bound or {})
         if cut in self._known:
@@ -134,6 +135,7 @@ class Scope:
         for hazard, k in hazards(g, root).items():  # what is not defined has no rate either
             if hazard not in known:
                 total = g.add("add", total, g.add("mul", g.number(0), k))
+        self.rated[root] = total
         return total
 
     def _bezier(self, s: int, points: list[int]) -> int:
