@@ -54,7 +54,9 @@ def test_a_gain_where_a_signals_effect_follows_the_state() -> None:
     """The pair holds, so settling is proved; the slope over all courses of the signal is larger than its k."""
     text = stance(rates='y = "-2*y + gust"', start="y = 0", define="", step="v_cmd + 0.5*y", duration="0.5 + 0.2*v", state="[0, 1]",
                   uncertain=SWING.replace("[-1, 1]", "[-0.4, 0.4]"), requires=("gain <= 0.05", "settles"))  # fmt: skip
-    assert verdicts(text) == ["undecided", "proved"]
+    results = proved(text).entries["results"]
+    assert [r["verdict"] for r in results["requirements"]] == ["undecided", "proved"]
+    assert results["gain"]["upper"] is None and results["requirements"][0]["value"]["upper"] is None
 
 
 @pytest.mark.parametrize("rate", ["dt(dt(dt(x)))", "dt(gust*t)", "dt(gust)"])
@@ -83,6 +85,16 @@ def test_a_stance_that_runs_backwards() -> None:
     with pytest.raises(Unprovable, match="not shown to last"):
         meaning(forward + over("T", -1, 1))
     assert verdicts(forward + over("T", -1, 1)) == ["undecided"]
+
+
+@pytest.mark.parametrize("share", [0, 3])
+def test_points_of_a_stance_that_runs_backwards(share: int) -> None:
+    """The region is mapped into itself, or is not: of a duration below 0 nothing is proved, and nothing refuted."""
+    asked = ("throughout(t >= 0)", "value(y) <= 1", "gain <= 1", "residual <= 0.1", "bound(v) <= 0.001")
+    text = stance(rates='y = "-2*y"', start='y = "v"', define="", step=f"0.3*v + 0.7*v_cmd + {share}*y", duration="T - 1",
+                  uncertain="v_cmd = { range = [0.4, 0.5], held = true }\nT = [0.5, 0.6]", requires=asked)  # fmt: skip
+    results = proved(text).entries["results"]
+    assert {r["verdict"] for r in results["requirements"]} == {"undecided"} and results["gain"] is None
 
 
 def test_a_correction_that_carries_a_signal() -> None:
