@@ -76,6 +76,16 @@ def test_what_is_not_defined_has_no_rate(expression: str) -> None:
     assert "proved" not in verdicts(text)
 
 
+def test_a_name_set_free_has_no_rate() -> None:
+    """∂v⁺/∂c = dt(h)/10 = 0.01; of an h between 0 and 1 nothing is known but that."""
+    text = stance(define='foot = "0.16*v + 0.08*(v - v_cmd)"\nh = "0.1*t"', step="xd + c*dt(h)/10", requires=("sensitivity(v, c) <= 0.001",),
+                  uncertain="v_cmd = { range = [0.4, 0.5], held = true }\nT = [0.38, 0.42]\nloss = [0, 0.02]\nc = [0.5, 1]")  # fmt: skip
+    assert verdicts(text) == ["refuted"]
+    with pytest.raises(Unprovable, match="no time rate"):
+        meaning(text + over("h", 0, 1))
+    assert verdicts(text + over("h", 0, 1)) == ["undecided"]
+
+
 def test_a_stance_that_runs_backwards() -> None:
     text = stance(rates='y = "-2*y"', start='y = "v"', define="", step="0.3*v + 0.7*v_cmd", duration="T - 1",
                   uncertain="v_cmd = { range = [0.4, 0.5], held = true }\nT = [0.5, 0.6]", requires=("value(y) <= 10",))  # fmt: skip

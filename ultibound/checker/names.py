@@ -102,6 +102,8 @@ class Names:
         put, met = self.terms.put, self.terms.variables(root)
         if any(n in self.statement.uncertain and self.statement.uncertain[n].within for n in met):
             raise Unprovable("a signal within the stance has no time rate")
+        if any(n in self.statement.stances[0].define for n in met):
+            raise Unprovable("a defined name that is set free has no time rate")
         rates = {put("variable", (), "t"): put("number", (), Fraction(1))} if "t" in met else {}
         for x in met:
             if f"rate({x})" in self.text:

@@ -120,6 +120,9 @@ class Scope:
             raise Bad(
                 f"uncertain.{signals[0]}: a signal within the stance has no time rate; write dt of something else"
             )
+        freed = [n for n in g.variables(root) if n in self.stance.define]
+        if freed:
+            raise Bad(f"over.{freed[0]}: a name that is set free has no time rate; free what stands beside the dt")
         seeds = {g.add("variable", name="t"): g.number(1)}
         for x in g.variables(root):
             rate = f"rate({x})"
