@@ -54,7 +54,9 @@ def test_a_gain_where_a_signals_effect_follows_the_state() -> None:
     """The pair holds, so settling is proved; the slope over all courses of the signal is larger than its k."""
     text = stance(rates='y = "-2*y + gust"', start="y = 0", define="", step="v_cmd + 0.5*y", duration="0.5 + 0.2*v", state="[0, 1]",
                   uncertain=SWING.replace("[-1, 1]", "[-0.4, 0.4]"), requires=("gain <= 0.05", "settles"))  # fmt: skip
-    assert verdicts(text) == ["undecided", "proved"]
+    results = proved(text).entries["results"]
+    assert [r["verdict"] for r in results["requirements"]] == ["undecided", "proved"]
+    assert results["gain"]["upper"] is None and results["requirements"][0]["value"]["upper"] is None
 
 
 @pytest.mark.parametrize("rate", ["dt(dt(dt(x)))", "dt(gust*t)", "dt(gust)"])
@@ -74,6 +76,16 @@ def test_what_is_not_defined_has_no_rate(expression: str) -> None:
     assert "proved" not in verdicts(text)
 
 
+def test_a_name_set_free_has_no_rate() -> None:
+    """∂v⁺/∂c = dt(h)/10 = 0.01; of an h between 0 and 1 nothing is known but that."""
+    text = stance(define='foot = "0.16*v + 0.08*(v - v_cmd)"\nh = "0.1*t"', step="xd + c*dt(h)/10", requires=("sensitivity(v, c) <= 0.001",),
+                  uncertain="v_cmd = { range = [0.4, 0.5], held = true }\nT = [0.38, 0.42]\nloss = [0, 0.02]\nc = [0.5, 1]")  # fmt: skip
+    assert verdicts(text) == ["refuted"]
+    with pytest.raises(Unprovable, match="no time rate"):
+        meaning(text + over("h", 0, 1))
+    assert verdicts(text + over("h", 0, 1)) == ["undecided"]
+
+
 def test_a_stance_that_runs_backwards() -> None:
     text = stance(rates='y = "-2*y"', start='y = "v"', define="", step="0.3*v + 0.7*v_cmd", duration="T - 1",
                   uncertain="v_cmd = { range = [0.4, 0.5], held = true }\nT = [0.5, 0.6]", requires=("value(y) <= 10",))  # fmt: skip
@@ -83,6 +95,16 @@ def test_a_stance_that_runs_backwards() -> None:
     with pytest.raises(Unprovable, match="not shown to last"):
         meaning(forward + over("T", -1, 1))
     assert verdicts(forward + over("T", -1, 1)) == ["undecided"]
+
+
+@pytest.mark.parametrize("share", [0, 3])
+def test_points_of_a_stance_that_runs_backwards(share: int) -> None:
+    """The region is mapped into itself, or is not: of a duration below 0 nothing is proved, and nothing refuted."""
+    asked = ("throughout(t >= 0)", "value(y) <= 1", "gain <= 1", "residual <= 0.1", "bound(v) <= 0.001")
+    text = stance(rates='y = "-2*y"', start='y = "v"', define="", step=f"0.3*v + 0.7*v_cmd + {share}*y", duration="T - 1",
+                  uncertain="v_cmd = { range = [0.4, 0.5], held = true }\nT = [0.5, 0.6]", requires=asked)  # fmt: skip
+    results = proved(text).entries["results"]
+    assert {r["verdict"] for r in results["requirements"]} == {"undecided"} and results["gain"] is None
 
 
 def test_a_correction_that_carries_a_signal() -> None:
@@ -109,4 +131,43 @@ def test_a_pushing_leg_is_asked_for_however_it_is_spelled(spelled: str) -> None:
     for sign, kept in ((1, True), (-6, False)):
         text = stance(rates=f'x = "xd"\nxd = "{spelled}"', define=f'foot = "0.16*v + 0.08*(v - v_cmd)"\nh = "0.6 + {sign}*t**2"',
                       uncertain="T = [0.20, 0.21]\nloss = [0, 0.01]\nv_cmd = { range = [0.4, 0.5], held = true }")  # fmt: skip
+        assert (proved(text).entries["results"]["set"] is not None) == kept
+
+
+@pytest.mark.parametrize("asked", ["next(v) - v_cmd - 0.3*y <= 0.14", "0.3*y - next(v) <= -0.26"])
+def test_a_signal_before_and_after_an_instant(asked: str) -> None:
+    """y' = −2y + u: u = −1 until 0.3 of a second, then 1, lifts y by 0.546 from there to touchdown; constant signals by 0.432."""
+    text = stance(rates='y = "-2*y + gust"', start="y = 0", define="", step="v_cmd + 0.3*y", duration="1", state="[0, 1]",
+                  uncertain=SWING, requires=(f"throughout({asked})",))  # fmt: skip
+    assert verdicts(text) == ["undecided"]
+
+
+@pytest.mark.parametrize("asked", ["value(xd) <= 9", "always(xd <= 9)", "throughout(xd <= 9)", "throughout(loss <= 1)"])
+def test_a_gain_set_free_that_a_duration_rests_on(asked: str) -> None:
+    text = stance(duration="k*T", rest="[gains]\nk = 1\n", requires=(asked,))
+    assert verdicts(text) == ["proved"] and verdicts(text + over("k", 0.9, 1.1)) == ["undecided"]
+
+
+@pytest.mark.parametrize(
+    "spelled",
+    [
+        "mass*(9.81 + dt(dt(h)))/(mass*h)*x", "force/(30*h)*x", "-(9.81 + dt(dt(h)))/(-h)*x", "(9.81 + dt(dt(h)))*h/h**2*x",
+        "(9.81 + dt(dt(h)))*2*(1/(2*h))*x", "(9.81 + dt(dt(0.3 + b)) + dt(dt(b)))/(0.3 + b + b + 0.3)*x",
+    ],
+)  # fmt: skip
+def test_a_leg_that_pulls_on_a_mass(spelled: str) -> None:
+    """h'' = −1.5·81 cos 9t/10 is below −9.81 within the stance."""
+    define = (
+        'foot = "0.16*v + 0.08*(v - v_cmd)"\nb = "0.075*cos(9*t)"\nh = "0.6 + 2*b"\nforce = "30*(9.81 + dt(dt(h)))"'
+    )
+    text = stance(rates=f'x = "xd"\nxd = "{spelled}"', define=define, step="0.3*xd + 0.7*v_cmd",
+                  uncertain="T = [0.20, 0.21]\nloss = [0, 0.01]\nmass = [29, 31]\nv_cmd = { range = [0.4, 0.5], held = true }")  # fmt: skip
+    assert proved(text).entries["results"]["set"] is None
+
+
+@pytest.mark.parametrize("height", ["0.6 + 0.1*t", "0.6 + 0*loss", "0.6"])
+def test_a_leg_that_pulls_at_a_height_without_curvature(height: str) -> None:
+    for lift, kept in ("[-15, -12]", False), ("[-2, -1]", True):
+        text = stance(rates='x = "xd"\nxd = "(9.81 + lift + dt(dt(h)))/h*x"', define=f'foot = "0*v"\nh = "{height}"', step="0.2*xd + 0.8*v_cmd",
+                      uncertain=f"T = [0.20, 0.21]\nloss = [0, 0.01]\nlift = {lift}\nv_cmd = {{ range = [0.4, 0.5], held = true }}")  # fmt: skip
         assert (proved(text).entries["results"]["set"] is not None) == kept

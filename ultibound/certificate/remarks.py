@@ -72,7 +72,7 @@ class Remarks:
                 parts.append(self.support(results.unsupported))
             elif not results.settled:
                 parts.append("no set that is mapped into itself was found" + self.size_that_would_do)
-            elif results.gain.upper is None and not ranged:
+            elif results.residual.upper is None and not ranged:
                 parts.append("no finite gain and residual were shown")
             elif r.kind == "settles":
                 why = "gain is not below 1" if results.bound is None else "bound is not below the radius of the set"

@@ -374,7 +374,7 @@ class Derivation:
             raise Unprovable("a signal within the stance stands outside the rates")
         for d in self.motion.signals:
             outer, (low, high) = self.range(self.statement.uncertain[d])
-            names = {copy(d, x) for x in self.motion.states} & met
+            names = {copy(d, x, early) for x in self.motion.states for early in (False, True)} & met
             inner = (low, high) if len(names) == 1 else ((low + high) / 2,) * 2  # one constant signal serves them all
             found |= dict.fromkeys(names, (outer, inner))
         return found

@@ -103,9 +103,9 @@ def place(number: int, axis: str) -> str:
     return f"library[{number}].at.{axis}"
 
 
-def copy(signal: str, state: str) -> str:
-    """The name of a signal as one continuous state answers it."""
-    return f"{signal}({state})"
+def copy(signal: str, state: str, early: bool = False) -> str:
+    """The name of a signal as one continuous state answers it, at touchdown or at a phase of the stance (`early`)."""
+    return f"{signal}({state}, t)" if early else f"{signal}({state})"
 
 
 def motion(names: Names) -> Motion:
@@ -219,8 +219,9 @@ def landed(names: Names, motion: Motion, root: int, phase: int | None = None) ->
     n = len(motion.states)
     at = {put("variable", (), TIME): duration if phase is None else put("mul", (duration, phase))}
     for i, x in enumerate(motion.states, 1):
-        # a signal's effect on one state is that of a constant; on several it is told apart: proofs/stance.md (5)
-        disturbed = [(n + j, put("variable", (), copy(d, x))) for j, d in enumerate(motion.signals, 1)]
+        # a signal's effect on one state at one phase is that of a constant; others are told apart: proofs/stance.md (5)
+        early = phase is not None
+        disturbed = [(n + j, put("variable", (), copy(d, x, early))) for j, d in enumerate(motion.signals, 1)]
         parts = [put("mul", (put("flow", (sigma, *gates), f"{i} {j}"), k)) for j, k in (*columns, *disturbed)]
         at[put("variable", (), x)] = reduce(lambda a, b: put("add", (a, b)), parts)
     return replaced(terms, root, at, duration if phase is not None else None)
@@ -231,17 +232,25 @@ def pushing(names: Names, entries: list[int]) -> list[int]:
     terms, found, stance = names.terms, dict[int, None](), names.statement.stances[0]
     texts = [*stance.define.values(), *(stance.dynamics.rate.values() if stance.dynamics is not None else ())]
     rated = any(n.op == "dt" for e in texts for n in e.nodes)
+    twice = {z: names.rated[r] for z, r in names.rated.items() if r in names.rated}  # z'' as the rates have it
     for entry in entries:
-        for k in terms.below(entry):
+        below = set(terms.below(entry))
+        for k in sorted(below):
             op, args, _ = terms.all[k]
-            if op == "div" and set(terms.variables(args[1])) & {TIME}:
+            if op != "div":
+                continue
+            if set(terms.variables(args[1])) & {TIME}:
                 bend = names.rate(names.rate(args[1]))
                 op, _, folded = terms.all[bend]
                 if op == "number" and folded and rated:  # g + z'' is one number by now
                     found |= dict.fromkeys((args[1], entry))
-                elif op != "number" and bend in terms.below(entry):
+                elif op != "number" and bend in below:
                     apart = args[0] == bend or bend not in terms.below(args[0])  # no sum that holds both g and z''
                     found |= dict.fromkeys((args[1], entry if apart else args[0]))
+                    continue
+            built = {z for z in terms.below(args[1]) if z == args[1] or terms.all[z][0] != "number"} & set(twice)
+            if any(terms.all[twice[z]][0] == "number" or twice[z] in below for z in built):  # z'' may be a number
+                found |= dict.fromkeys((args[1], entry))
     return list(found)
 
 

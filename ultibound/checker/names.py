@@ -31,6 +31,7 @@ class Names:
         self.landing = landing
         self.terms, self.statement, self.cut, self.rank = terms, statement, cut, dict(bound)
         self.open: set[str] = set()  # rates that are being worked out
+        self.rated: dict[int, int] = {}  # what a time rate was asked of, and it
         if cut in bound:
             self.rank[cut] = terms.put("mark", (bound[cut],), cut)
         self.text: dict[str, Expression] = {**statement.constants, **statement.gains, **stance.define}
@@ -101,6 +102,8 @@ class Names:
         put, met = self.terms.put, self.terms.variables(root)
         if any(n in self.statement.uncertain and self.statement.uncertain[n].within for n in met):
             raise Unprovable("a signal within the stance has no time rate")
+        if any(n in self.statement.stances[0].define for n in met):
+            raise Unprovable("a defined name that is set free has no time rate")
         rates = {put("variable", (), "t"): put("number", (), Fraction(1))} if "t" in met else {}
         for x in met:
             if f"rate({x})" in self.text:
@@ -115,6 +118,7 @@ class Names:
         for hazard, k in hazards(self.terms, root).items():  # what is not defined has no rate either
             if hazard not in known:
                 total = put("add", (total, put("mul", (put("number", (), Fraction(0)), k))))
+        self.rated[root] = total
         return total
 
 

@@ -57,15 +57,18 @@ class Results:
         (ball,) = balls
         invariant = self.one("invariant-region", "invariant") or self.one("invariant-ball", "invariant")
         self.domain = invariant.domain if invariant is not None else ball.domain
+        self.lasting = self.derivation.motion is None or self.above(1)  # else points are of no stance
+        self.unsupported = 0 if self.lasting else 1
         self.settled = invariant is not None and self.supported()
         # a smaller ball that is not mapped into itself, or a stance that is not shown to last, is no set to speak of
-        self.partial = not self.settled and (ball.rule == "smaller-ball" or invariant is not None)
+        self.partial = not self.settled and (ball.rule == "smaller-ball" or invariant is not None or not self.lasting)
         centre = proof.lines[ball.uses[0]].concludes
         asked = self.settled or any(r.kind == "radius" for r in self.statement.requirements)
         self.centre, self.edge = Span(centre["lower"], centre["upper"]), self.reach() if asked else None
         self.radius = Span(ball.concludes["radius"], self.edge)
         self.kind, self.whole = self.set_found(invariant if self.settled else None, ball)
         orbit = self.one("orbit", "orbit")
+        orbit = orbit if self.lasting else None
         self.orbit = orbit.concludes["distance"] if orbit is not None else None
         self.room = self.room_left(orbit)
         self.missed = self.moved_at_least(far(self.attained(f"target-miss[{self.state}]")))
@@ -74,7 +77,7 @@ class Results:
         self.reported = self.chosen()
         route = self.routes.get(self.reported, Route())
         self.residual, self.bound = route.residual, route.bound
-        self.gain = self.contraction() if self.reported == "curve" else route.gain
+        self.gain = self.slopes(self.contraction() if self.reported == "curve" else route.gain)
         self.best = self.sharp = self.least_bound()
         self.push = self.pushed()
         numbered = enumerate(self.statement.requirements, 1)
@@ -107,11 +110,15 @@ class Results:
         """Whether what has to stay positive throughout a stance does: proofs/stance.md (4)."""
         motion = self.derivation.motion
         for k in range(1, 1 + len(motion.positive) if motion is not None else 1):
-            line = self.one("range", f"support[{k}]")
-            if line is None or line.domain != self.domain or not line.concludes["lower"] > 0:
+            if not self.above(k):
                 self.unsupported = k
                 return False
         return True
+
+    def above(self, k: int) -> bool:
+        """Whether the k-th quantity that has to stay positive does."""
+        line = self.one("range", f"support[{k}]")
+        return line is not None and line.domain == self.domain and line.concludes["lower"] > 0
 
     def escapes(self) -> bool:
         """Whether a point leaves the region: else no ball is the set (proofs/invariant-set.md (4))."""
@@ -165,6 +172,10 @@ class Results:
         every = len(lowers) == len(found) and (not self.statement.correction or "split" in self.routes)
         return Span(min(lowers, default=None) if every else None, min(uppers, default=None))
 
+    def slopes(self, gain: Span) -> Span:
+        """A gain without its upper end where k is no bound of slopes: proofs/stance.md (5)."""
+        return Span(gain.lower, None) if self.derivation.loose() else gain
+
     def least_bound(self) -> Span | None:
         """How far the state can be in the long run, by the best argument on the set."""
         found = [r.bound.upper for r in self.routes.values() if r.bound is not None and r.bound.upper is not None]
@@ -215,7 +226,7 @@ class Results:
         """The largest value surely taken (upper) and the smallest (lower), by point lines."""
         high: tuple[Fraction, int] | None = None
         low: tuple[Fraction, int] | None = None
-        for n, line in self.lines("point", proves):
+        for n, line in self.lines("point", proves) if self.lasting else ():
             if line.domain is not None and line.domain != self.domain:
                 raise Rejected(f"{proves}: a point of another set")
             if high is None or line.concludes["lower"] > high[0]:
@@ -271,9 +282,9 @@ class Results:
     def gained(self, r: Any, c: tuple[Fraction, Fraction]) -> Outcome:
         """Refuted only where no route is left that might have a smaller gain: proofs/attained.md (3)."""
         asked = self.statement.route
-        span = self.routes.get(asked, Route()).gain if asked in ("slope", "split") else self.contraction()
+        span = self.slopes(self.routes.get(asked, Route()).gain if asked in ("slope", "split") else self.contraction())
         final = not self.any and (asked in ("slope", "split") or not self.statement.correction)
-        proved = self.whole and not self.derivation.loose() and compared(r.relation, Span(None, span.upper), c)
+        proved = self.whole and compared(r.relation, Span(None, span.upper), c)
         return verdict(proved, final and opposed(r.relation, Span(None, span.lower), c), span)
 
     def push_outcome(self, r: Any, c: tuple[Fraction, Fraction]) -> Outcome:
@@ -303,7 +314,7 @@ class Results:
             most = min(counts, default=None)
         least: Fraction | None = None
         paths = [(x.concludes["steps"] + 1, n) for n, x in self.lines("path", "path")
-                 if x.concludes["from"] <= start[0] and x.concludes["distance"] > end[1]]  # fmt: skip
+                 if self.lasting and x.concludes["from"] <= start[0] and x.concludes["distance"] > end[1]]  # fmt: skip
         if paths:
             least, line = max(paths)
             self.needed.add(line)

@@ -171,17 +171,24 @@ def _pushing(scope: Scope, entries: list[int]) -> list[int]:
     g, found, d = scope.graph, dict[int, None](), scope.stance.dynamics
     texts = [*scope.stance.define.values(), *(d.rate.values() if d is not None else ())]
     rated = any(n.op == "dt" for e in texts for n in e.nodes)
+    twice = [(z, scope.rated[r]) for z, r in scope.rated.items() if r in scope.rated]  # as they stand in the rates
     for entry in entries:
-        for k in g.reached((entry,)):
-            gate = g.gates[k]
-            if gate.op == "div" and TIME in g.variables(gate.args[1]):
-                bend = scope.rate(scope.rate(gate.args[1]))
+        parts = g.reached((entry,))
+        for divided, below in (g.gates[k].args for k in parts if g.gates[k].op == "div"):
+            if TIME in g.variables(below):
+                bend = scope.rate(scope.rate(below))
                 if g.gates[bend].op == "number":
                     if rated and g.gates[bend].value:  # folded into one number with g
-                        found |= dict.fromkeys((gate.args[1], entry))
-                elif bend in g.reached((entry,)):
-                    apart = gate.args[0] == bend or bend not in g.reached((gate.args[0],))
-                    found |= dict.fromkeys((gate.args[1], entry if apart else gate.args[0]))
+                        found |= dict.fromkeys((below, entry))
+                elif bend in parts:
+                    apart = divided == bend or bend not in g.reached((divided,))
+                    found |= dict.fromkeys((below, entry if apart else divided))
+                    continue
+            inner = g.reached((below,))
+            for z, bend in twice:  # a quotient by what is built on z, or z'' that is a number
+                built = z == below or (z in inner and g.gates[z].op != "number")
+                if built and (g.gates[bend].op == "number" or bend in parts):
+                    found |= dict.fromkeys((below, entry))
     return list(found)
 
 
@@ -207,9 +214,12 @@ def _held(scope: Scope, m: Motion) -> tuple[dict[int, int], int]:
     return by, duration
 
 
-def copy(signal: str, state: str) -> str:
-    """The name of a signal as one continuous state answers it: a constant of its own (proofs/stance.md (5))."""
-    return f"{signal}({state})"
+def copy(signal: str, state: str, early: bool = False) -> str:
+    """The name of a signal as one continuous state answers it, at touchdown or at a phase of the stance (`early`):
+
+    constants of their own (proofs/stance.md (5)).
+    """
+    return f"{signal}({state}, t)" if early else f"{signal}({state})"
 
 
 def landed(scope: Scope, m: Motion, root: int, phase: int | None = None) -> int:
@@ -227,7 +237,7 @@ def landed(scope: Scope, m: Motion, root: int, phase: int | None = None) -> int:
     n = len(m.states)
     at = {g.add("variable", name=TIME): duration if phase is None else g.add("mul", duration, phase)}
     for i, x in enumerate(m.states, 1):
-        signals = [(n + j, g.add("variable", name=copy(d, x))) for j, d in enumerate(m.signals, 1)]
+        signals = [(n + j, g.add("variable", name=copy(d, x, phase is not None))) for j, d in enumerate(m.signals, 1)]
         parts = [g.add("mul", g.add("flow", sigma, *values, name=f"{i} {j}"), k) for j, k in (*columns, *signals)]
         at[g.add("variable", name=x)] = reduce(lambda a, b: g.add("add", a, b), parts)
     return substituted(g, root, at, None if phase is None else duration)

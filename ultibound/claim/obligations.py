@@ -188,6 +188,9 @@ class Obligations:
         wanted = self.claim.requirements[number - 1]
         bound, ranges = self._set(domain, wanted.over)
         scope = self._scope(bound, cut=wanted.by or "")
+        freed = set(wanted.over) - set(self.claim.uncertain) - set(self.stance.states)
+        if freed & self._supporting(scope):
+            raise Bad(f"over.{min(freed)}: the stance is not shown to last where this name is set free")
         if wanted.left is not None and wanted.right is not None:
             root, phase = self.graph.add("sub", scope.node(wanted.left), scope.node(wanted.right)), None
             if wanted.kind == "throughout":
@@ -197,9 +200,6 @@ class Obligations:
             root = self._landed(scope, scope.node(wanted.expression))
             return self._of(f"require[{number}]", root, "", ranges)
         root = scope.name(f"next({wanted.state})")
-        freed = set(wanted.over) - set(self.claim.uncertain) - set(self.stance.states)
-        if freed & self._supporting(scope):
-            raise Bad(f"over.{min(freed)}: the stance is not shown to last where this name is set free")
         if self._stirred(root, wanted.by or ""):
             raise Bad(f"the effect of a signal within the stance follows {wanted.by}, so no sensitivity by it is known")
         return self._of(f"require[{number}]", root, wanted.by or "", ranges)
@@ -344,7 +344,8 @@ class Obligations:
             raise Bad(f"uncertain.{loose[0]}: a signal within the stance may only stand in dynamics.rate")
         found: dict[str, tuple[Ends, Ends]] = {}
         for d in self.motion.signals if self.motion is not None else ():
-            copies = [n for x in self.motion.states if (n := copy(d, x)) in met] if self.motion is not None else []
+            states = self.motion.states if self.motion is not None else ()
+            copies = [n for x in states for early in (False, True) if (n := copy(d, x, early)) in met]
             (outer,), inner, _ = self._cells(self.claim.uncertain[d])
             middle = (inner[0] + inner[1]) / 2
             found |= {n: (outer, inner if len(copies) == 1 else (middle, middle)) for n in copies}

@@ -33,6 +33,7 @@ class Scope:
     ) -> None:
         """`landing` tells what a gate of the stance's time is at touchdown, where there are dynamics."""
         self._landing, self._open = landing, set[str]()
+        self.rated: dict[int, int] = {}  # what a time rate was asked of, and it
         self.graph, self.claim, self.stance, self.cut = graph, claim, stance, cut
         self._known: dict[str, int] = dict(bound or {})
         if cut in self._known:
@@ -119,6 +120,9 @@ class Scope:
             raise Bad(
                 f"uncertain.{signals[0]}: a signal within the stance has no time rate; write dt of something else"
             )
+        freed = [n for n in g.variables(root) if n in self.stance.define]
+        if freed:
+            raise Bad(f"over.{freed[0]}: a name that is set free has no time rate; free what stands beside the dt")
         seeds = {g.add("variable", name="t"): g.number(1)}
         for x in g.variables(root):
             rate = f"rate({x})"
@@ -134,6 +138,7 @@ class Scope:
         for hazard, k in hazards(g, root).items():  # what is not defined has no rate either
             if hazard not in known:
                 total = g.add("add", total, g.add("mul", g.number(0), k))
+        self.rated[root] = total
         return total
 
     def _bezier(self, s: int, points: list[int]) -> int:
