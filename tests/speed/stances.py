@@ -12,7 +12,8 @@ from ultibound.certificate.lines import Writer
 from ultibound.checker import check
 from ultibound.claim import parse_claim
 from ultibound.claim.obligations import Obligations
-from ultibound.prove import ACCURACY, prove
+from ultibound.prove import prove
+from ultibound.prove.one import ACCURACY
 from ultibound.stance.trials import trial
 
 CELLS = (100, 1000, 7500)

@@ -9,26 +9,26 @@ from typing import TYPE_CHECKING
 
 import numpy as np
 
-from .bounding.evaluate import to_float
-from .bounding.intervals import Floats
-from .bounding.search import Effort
-from .certificate.enclosing import BITS, Proved
-from .certificate.lines import downward, upward
-from .certificate.norms import NormWriter, moves_of
-from .certificate.several import SeveralRemarks
-from .checker.matrices import Leaf, Matrix, Metric, metric
-from .checker.reals import Undefined
-from .checker.rules import Rejected
-from .claim import ClaimError
-from .claim.constants import constant
-from .claim.obligations import RANGED, Domain, Obligation
-from .contraction.metrics import Proposal, proposals
-from .contraction.norms import Matrices, Norm, Stretched, stretched
-from .contraction.samples import drawn
-from .prove import COARSE, DECIDED, Attempt
+from ..bounding.evaluate import to_float
+from ..bounding.intervals import Floats
+from ..bounding.search import Effort
+from ..certificate.enclosing import BITS, Proved
+from ..certificate.lines import downward, upward
+from ..certificate.norms import NormWriter, moves_of
+from ..certificate.several import SeveralRemarks
+from ..checker.matrices import Leaf, Matrix, Metric, metric
+from ..checker.reals import Undefined
+from ..checker.rules import Rejected
+from ..claim import ClaimError
+from ..claim.constants import constant
+from ..claim.obligations import RANGED, Domain, Obligation
+from ..contraction.metrics import Proposal, proposals
+from ..contraction.norms import Matrices, Norm, Stretched, stretched
+from ..contraction.samples import drawn
+from .one import COARSE, DECIDED, Attempt
 
 if TYPE_CHECKING:
-    from .certificate.lines import Writer
+    from ..certificate.lines import Writer
 
 SAMPLES = 300
 FEW = 3000  # leaves of a search that only compares metrics

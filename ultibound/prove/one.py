@@ -1,39 +1,32 @@
-"""Claim → step map → certified set → routes → orbits → requirements → certificate → check.
-
-Every number on a line is measured by the checker's own arithmetic on the tree that the search found; the finished
-certificate is checked again from its bytes before anyone sees it.
-"""
+"""Claims of one state: certified set → routes → orbits → requirements → certificate."""
 
 from __future__ import annotations
 
-import time
 from fractions import Fraction
 from math import floor, prod
 
-from .bounding.defined import undefined_point
-from .bounding.evaluate import to_float
-from .certificate.certificate import Certificate, sealed
-from .certificate.enclosing import Encloser, Proved, Watch
-from .certificate.explaining import Explained
-from .certificate.lines import Writer, downward, upward
-from .certificate.remarks import STOPS, Remarks, Search
-from .certificate.results import assembled
-from .checker import Verdict, check
-from .checker.derive import Derivation
-from .checker.derive import varied as statement_varied
-from .checker.flows import Flows
-from .checker.outcomes import results_of
-from .checker.reals import Undefined
-from .checker.rules import Rejected
-from .checker.theorems import levels, movement, sharpest
-from .claim import Bad, Claim, ClaimError
-from .claim.constants import constant
-from .claim.obligations import RANGED, Domain, Obligations
-from .claim.provable import not_yet, varied
-from .contraction.curve import Profile, inward
-from .contraction.orbits import Steering, orbits, slow_path
-from .stance.points import Unsolved
-from .stance.trials import Trial, trial
+from ..bounding.evaluate import to_float
+from ..certificate.certificate import sealed
+from ..certificate.enclosing import Encloser, Proved, Watch
+from ..certificate.explaining import Explained
+from ..certificate.lines import Writer, downward, upward
+from ..certificate.remarks import Remarks, Search
+from ..certificate.results import assembled
+from ..checker.derive import Derivation
+from ..checker.derive import varied as statement_varied
+from ..checker.flows import Flows
+from ..checker.outcomes import results_of
+from ..checker.reals import Undefined
+from ..checker.rules import Rejected
+from ..checker.theorems import levels, movement, sharpest
+from ..claim import Bad, Claim, ClaimError
+from ..claim.constants import constant
+from ..claim.obligations import RANGED, Domain, Obligations
+from ..claim.provable import varied
+from ..contraction.curve import Profile, inward
+from ..contraction.orbits import Steering, orbits, slow_path
+from ..stance.points import Unsolved
+from ..stance.trials import Trial, trial
 
 SHARPER = 1e-2  # factor on the gap when an undecided requirement is pursued
 FINEST = 1e-11
@@ -52,63 +45,12 @@ REACH, ENOUGH = 10_000, 200  # steps of the longest path, and of one that is lon
 Known = dict[int, tuple[Trial, Flows]]  # by requirement with ranges of its own, or 0
 
 
-class InternalError(Exception):
-    """The checker refuses a certificate that was just built: a defect of this program."""
-
-
-def prove(claim: Claim, watch: Watch | None = None) -> Certificate:
-    """Proves what it can of a claim and returns a certificate that the checker has accepted.
-
-    Raises ClaimError where the claim cannot be used (undefined at a point of its region, target outside, or of a
-    kind that cannot be proved yet). Ctrl-C stops the search; what was proved by then is kept, and the certificate
-    says so (`interrupted`).
-    """
-    problem = not_yet(claim)
-    if problem is not None:
-        raise ClaimError.of(claim.place, *problem.split(": ", 1))
-    try:
-        for c in (claim, *(varied(claim, n) for n in apart(claim))):
-            undefined = undefined_point(c)
-            if undefined is not None:
-                raise ClaimError.of(claim.place, *undefined)
-        return _proved(claim, watch or (lambda stage, leaves, high: None))
-    except Bad as why:
-        raise ClaimError.of(claim.place, "", str(why)) from None
-
-
-def _proved(claim: Claim, watch: Watch) -> Certificate:
-    """The certificate of a claim that can be used: tried at smaller gaps while that may decide a requirement."""
-    kind = Attempt
-    if len(claim.stances[0].states) > 1:
-        from .prove_several import SeveralAttempt
-
-        kind = SeveralAttempt
-    gap = to_float(claim.gap)
-    until = time.monotonic() + to_float(claim.seconds)
-    sharp = claim.route == "curve" or any(r.kind == "sharp_bound" for r in claim.requirements)
-    known: Known = {}
-    while True:
-        attempt = _best(kind(claim, gap, until, watch, sharp, known=known))
-        if attempt.curve_may_help and not attempt.ranges.interrupted and time.monotonic() < until:
-            sharp = True
-            continue
-        gap *= SHARPER
-        cut = any(x in STOPS for x in attempt.ranges.limits.values())  # a smaller gap would meet the same limit
-        if cut or not attempt.pursue or gap < FINEST or attempt.ranges.interrupted or time.monotonic() > until:
-            break
-    certificate = attempt.certificate
-    verdict = _checked(certificate, attempt)
-    if verdict.status != "valid":
-        raise InternalError(f"{verdict.place}: {verdict.reason}")
-    return certificate
-
-
 def apart(claim: Claim) -> list[int]:
     """Requirements whose `over` asks for a set and routes of their own."""
     return [n for n, r in enumerate(claim.requirements, 1) if r.over and r.kind not in RANGED]
 
 
-def _best(whole: Attempt) -> Attempt:
+def best(whole: Attempt) -> Attempt:
     """The attempt itself, or one on a smaller ball where nothing larger is kept and that decides no less."""
     if whole.smaller is None or whole.ranges.interrupted:
         return whole
@@ -117,20 +59,6 @@ def _best(whole: Attempt) -> Attempt:
         whole.known,
     )  # fmt: skip
     return attempt if attempt.results.settled and attempt.decided >= whole.decided else whole
-
-
-def _checked(certificate: Certificate, attempt: Attempt) -> Verdict:
-    """The checker's verdict on the finished bytes; the first Ctrl-C does not keep it from being reached."""
-
-    def watch(done: int, total: int) -> None:
-        attempt.watch("checking the certificate, line by line", done, float(total))
-
-    try:
-        return check(certificate.to_bytes(), watch)
-    except KeyboardInterrupt:
-        if attempt.ranges.interrupted:
-            raise
-        return check(certificate.to_bytes(), watch)
 
 
 class Attempt:
@@ -277,7 +205,7 @@ class Attempt:
         """A requirement over ranges of its own: a proof of the same kind, whose lines are taken in."""
         derivation = Derivation(statement_varied(self.writer.derivation.statement, number))
         claim = varied(self.claim, number)
-        own = _best(
+        own = best(
             type(self)(claim, self.gap, self.until, self.watch, self.sharp, None, number, derivation, self.known)
         )
         self.ranges.interrupted |= own.ranges.interrupted
