@@ -347,7 +347,7 @@ class Derivation:
         self, root: int, by: str = "", given: dict[str, tuple[Ends, Ends]] | None = None, on_set: bool = False
     ) -> Meaning:
         variables = []
-        given = {PHASE: ((Fraction(0), Fraction(1)),) * 2, **self.signals(root), **(given or {})}
+        given = {PHASE: ((Fraction(0), Fraction(1)),) * 2, **self.signals(set(self.terms.variables(root))), **(given or {})}
         for name in self.terms.variables(root):
             if name in given:
                 outer, inner = given[name]
@@ -364,12 +364,11 @@ class Derivation:
             raise Unprovable(f"more than {MOST_CELLS} combinations of library cells and listed values")
         return Meaning(root, by, variables, on_set)
 
-    def signals(self, root: int) -> dict[str, tuple[Ends, Ends]]:
+    def signals(self, met: set[str]) -> dict[str, tuple[Ends, Ends]]:
         """Signals within the stance as continuous states answer them: proofs/stance.md (5)."""
         found: dict[str, tuple[Ends, Ends]] = {}
         if self.motion is None:
             return found
-        met = set(self.terms.variables(root))
         if any(self.statement.uncertain[n].within for n in met if n in self.statement.uncertain):
             raise Unprovable("a signal within the stance stands outside the rates")
         for d in self.motion.signals:

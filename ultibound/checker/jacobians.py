@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Iterator, Mapping
+from dataclasses import replace
 from fractions import Fraction
 from itertools import pairwise, product
 from typing import Any
@@ -31,6 +32,8 @@ class Table:
         meanings = [[d.meaning(name, domain) for name in row] for row in names]
         self.variables = together([m for row in meanings for m in row])
         met = [v.name for v in self.variables]
+        constant = d.signals(set(met))  # of several states that answer a signal, one constant serves them all
+        self.variables = [replace(v, inside=constant[v.name][1]) if v.name in constant else v for v in self.variables]
         self.rows = [
             [Evaluator(d.terms, m.root, m.by, met, d.statement.libraries, self.a, flows) for m in row]
             for row in meanings

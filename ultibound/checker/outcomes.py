@@ -15,7 +15,7 @@ class SeveralResults(Results):
     """Everything `results` may claim of a claim of several states."""
 
     def __init__(self, proof: Proof, variant: int = 0) -> None:
-        self.proof, self.variant, self.needed, self.unsupported = proof, variant, set[int](), 0
+        self.proof, self.variant, self.needed = proof, variant, set[int]()
         self.derivation = proof.about(variant)
         self.statement, self.states = self.derivation.statement, self.derivation.states
         self.state, self.any = self.states[0], self.statement.shrink
@@ -27,8 +27,10 @@ class SeveralResults(Results):
         invariant = next((x for rule in rules if (x := self.one(rule, "invariant")) is not None), None)
         self.domain = invariant.domain if invariant is not None else ball.domain
         self.metric: Metric = balls[0].domain.metric
+        self.lasting = self.derivation.motion is None or self.above(1)  # else points are of no stance
+        self.unsupported = 0 if self.lasting else 1
         self.settled = invariant is not None and self.supported()
-        self.partial = not self.settled and (ball.rule == "smaller-ball" or invariant is not None)
+        self.partial = not self.settled and (ball.rule == "smaller-ball" or invariant is not None or not self.lasting)
         self.centres = {s: Span(*x) for s, x in zip(self.states, balls[0].domain.targets, strict=True)}
         self.edges = {s: self.reached(s) for s in self.states} if self.settled else dict.fromkeys(self.states)
         self.radius = Span(ball.concludes["radius"], ball.concludes.get("outer"))
@@ -37,7 +39,7 @@ class SeveralResults(Results):
         self.routes = {} if self.partial or self.one("slope", "slope") is None else {"slope": self.of_slope()}
         self.reported = "slope"
         route = self.routes.get("slope", Route())
-        self.gain, self.residual, self.bound = route.gain, route.residual, route.bound
+        self.gain, self.residual, self.bound = self.slopes(route.gain), route.residual, route.bound
         self.best = self.sharp = None
         self.bounds = self.bounds_by_state()
         self.push = None
@@ -85,7 +87,7 @@ class SeveralResults(Results):
 
     def stretched(self, proves: str) -> Fraction | None:
         """The largest norm surely taken."""
-        found = [(x.concludes["lower"], n) for n, x in self.lines("stretch", proves) if x.domain == self.domain]
+        found = [(x.concludes["lower"], n) for n, x in self.lines("stretch", proves) if self.lasting and x.domain == self.domain]
         if not found:
             return None
         self.needed.add(max(found)[1])
@@ -166,7 +168,7 @@ class SeveralResults(Results):
             return verdict(self.whole and span is not None and compared(r.relation, span, c), False, span)
         found = {"bound": self.bound, "gain": self.gain, "residual": self.residual}.get(r.kind)
         upper = Span(None, None if found is None else found.upper)
-        proved = self.whole and compared(r.relation, upper, c) and not (r.kind == "gain" and self.derivation.loose())
+        proved = self.whole and compared(r.relation, upper, c)
         # in a metric the claim fixes, what is surely taken settles it; in another norm it might be less
         final = self.stated() and not self.any and r.kind != "bound" and found is not None
         return verdict(proved, final and opposed(r.relation, Span(None, found.lower if found else None), c), found)
