@@ -347,8 +347,9 @@ class Derivation:
         self, root: int, by: str = "", given: dict[str, tuple[Ends, Ends]] | None = None, on_set: bool = False
     ) -> Meaning:
         variables = []
-        given = {PHASE: ((Fraction(0), Fraction(1)),) * 2, **self.signals(set(self.terms.variables(root))), **(given or {})}
-        for name in self.terms.variables(root):
+        met = self.terms.variables(root)
+        given = {PHASE: ((Fraction(0), Fraction(1)),) * 2, **self.signals(set(met)), **(given or {})}
+        for name in met:
             if name in given:
                 outer, inner = given[name]
             else:

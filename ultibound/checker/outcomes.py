@@ -87,7 +87,8 @@ class SeveralResults(Results):
 
     def stretched(self, proves: str) -> Fraction | None:
         """The largest norm surely taken."""
-        found = [(x.concludes["lower"], n) for n, x in self.lines("stretch", proves) if self.lasting and x.domain == self.domain]
+        lines = self.lines("stretch", proves) if self.lasting else []
+        found = [(x.concludes["lower"], n) for n, x in lines if x.domain == self.domain]
         if not found:
             return None
         self.needed.add(max(found)[1])
