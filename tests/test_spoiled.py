@@ -123,6 +123,9 @@ def sample(name: str) -> dict[str, Any]:
         return proved(stances(), data={"gaits.csv": GAITS}).entries
     if name in ("split", "over"):
         return proved(SPLIT if name == "split" else OVER).entries
+    if name == "several":
+        text = (EXAMPLES / "recentring.toml").read_text().replace("[0.36, 0.42]", "[0.38, 0.40]")
+        return proved(text + "[effort]\ngap = 0.1\n").entries
     if name == "ball":
         return proved(BALL.replace("0.8*(v - c)**3", "0.02*(v - c)**3")).entries
     text = (EXAMPLES / f"{name}.toml").read_text()
@@ -191,6 +194,7 @@ def lines_checked_once() -> Iterator[None]:
         "split",
         "over",
         "stance",
+        "several",
     ],
 )
 def entries(request: pytest.FixtureRequest) -> dict[str, Any]:

@@ -32,10 +32,10 @@ class SeveralResults(Results):
         self.settled = invariant is not None and self.supported()
         self.partial = not self.settled and (ball.rule == "smaller-ball" or invariant is not None or not self.lasting)
         self.centres = {s: Span(*x) for s, x in zip(self.states, balls[0].domain.targets, strict=True)}
-        self.edges = {s: self.reached(s) for s in self.states} if self.settled else dict.fromkeys(self.states)
         self.radius = Span(ball.concludes["radius"], ball.concludes.get("outer"))
         self.edge, self.orbit, self.room, self.missed = self.radius.upper, None, None, None
         self.kind, self.whole = self.set_found(invariant if self.settled else None, ball)
+        self.edges = {s: self.reached(s) for s in self.states if self.kind == "region"}
         self.routes = {} if self.partial or self.one("slope", "slope") is None else {"slope": self.of_slope()}
         self.reported = "slope"
         route = self.routes.get("slope", Route())
@@ -133,8 +133,8 @@ class SeveralResults(Results):
         if not self.whole:
             return None
         if self.kind == "region":
-            room, edge = self.bounds.get(s), self.edges[s]
-            left = None if room is None or edge is None or edge.lower is None else edge.lower - room
+            room, edge = self.bounds.get(s), self.edges[s].lower
+            left = None if room is None or edge is None else edge - room
         else:
             inside = self.within()
             span = None if inside is None or self.radius.lower is None else self.radius.lower - inside
@@ -181,10 +181,7 @@ class SeveralResults(Results):
         """proofs/ultimate-bound.md: a bound inside the set, in its norm or state by state."""
         inside = self.within()
         if self.kind == "region":
-            edges = [self.edges[s] for s in self.states]
-            limits = [None if x is None else x.lower for x in edges]
-            by_state = [self.bounds.get(s) for s in self.states]
-            ok = self.whole and all(less(b, x) for b, x in zip(by_state, limits, strict=True))
+            ok = self.whole and all(less(self.bounds.get(s), self.edges[s].lower) for s in self.states)
         else:
             ok = self.whole and less(inside, self.radius.lower)
         return verdict(ok, False, None if inside is None else Span(None, inside))
