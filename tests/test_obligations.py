@@ -12,6 +12,7 @@ from tests.corpus import CASES, Case
 from tests.stances import GAITS, PARTS
 from ultibound.checker.derive import Derivation
 from ultibound.checker.derive import Domain as CheckerDomain
+from ultibound.checker.matrices import Metric, metric
 from ultibound.checker.rules import SHAPES
 from ultibound.checker.statement import read_statement
 from ultibound.checker.theorems import THEOREMS
@@ -41,6 +42,13 @@ def spelled_out(graph: list[tuple[str, tuple[int, ...], object]], root: int) -> 
     return tuple(out)
 
 
+def sheared(n: int) -> Metric:
+    """A norm in which every state reaches further than in any other."""
+    rows = [[Fraction(int(j == i) - int(j == i + 1), 1) for j in range(n)] for i in range(n)]
+    inverse = [[Fraction(int(j >= i)) for j in range(n)] for i in range(n)]
+    return metric("polytope", tuple(map(tuple, rows)), tuple(map(tuple, inverse)), n)
+
+
 @pytest.mark.parametrize("case", PROVABLE, ids=lambda c: c.name[:40].encode("ascii", "replace").decode())
 @pytest.mark.parametrize("ball", [False, True])
 def test_both_lists_mean_the_same(case: Case, ball: bool) -> None:
@@ -50,18 +58,21 @@ def test_both_lists_mean_the_same(case: Case, ball: bool) -> None:
     target = (Fraction(1, 2), Fraction(1, 2))
     mine = Domain("ball" if ball else "region", Fraction(1, 8), target)
     theirs = CheckerDomain(ball, Fraction(1, 8), target)
-    listed: list[Obligation] = [
-        o.target(),
-        o.image(),
-        o.miss(),
-        o.slope(mine),
-        *(o.target_slope(h) for h in o.moving()),
-    ]
+    several = len(o.states) > 1
+    if several:
+        norm = sheared(len(o.states))
+        wide = tuple(norm.support(i) for i in range(len(o.states)))
+        mine = replace(mine, beyond=Fraction(1, 99), targets=(target,) * len(wide), wide=wide)
+        theirs = replace(theirs, beyond=Fraction(1, 99), targets=(target,) * len(wide), metric=norm)
+    listed: list[Obligation] = []
+    for s in o.states:
+        listed += [o.target(s), o.image(s), o.miss(s), *(o.target_slope(h, s) for h in o.moving(s))]
+        listed += [o.slope(mine, s, x) for x in o.states]
     listed += [o.requirement(n, mine) for n, r in enumerate(claim.requirements, 1) if r.kind in RANGED]
     radii = (Fraction(1, 16), Fraction(1, 8))
-    listed += [*(o.shell(n, mine, radii) for n in (1, 2)), o.line(mine, Fraction(1, 3))]
+    listed += [] if several else [*(o.shell(n, mine, radii) for n in (1, 2)), o.line(mine, Fraction(1, 3))]
     cut = replace(theirs, radii=radii, slope=Fraction(1, 3))
-    if claim.correction:
+    if claim.correction and not several:
         listed += [o.split_slope(mine), o.split_residual(mine)]
     gates = [(g.op, g.args, g.value if g.op in ("number", "power") else g.name or None) for g in o.graph.gates]
     for obligation in listed:
@@ -70,8 +81,9 @@ def test_both_lists_mean_the_same(case: Case, ball: bool) -> None:
         assert [(v.name, v.cells, v.listed) for v in obligation.variables] == [
             (v.name, v.cells, v.listed) for v in meaning.variables
         ]
+        assert not several or [v.inside for v in obligation.variables] == [v.inside for v in meaning.variables]
         assert spelled_out(gates, obligation.root) == spelled_out(d.terms.all, meaning.root)
-    assert o.region() == d.region()
+    assert all(o.region(s) == d.region(s) for s in o.states)
 
 
 @pytest.mark.parametrize("name", PARTS)

@@ -128,8 +128,9 @@ def _prove(path: Path, output: Path | None, settings: dict[str, str], as_json: b
     except OSError as why:
         click.echo(f"{why.filename or path}: {why.strerror or why}", err=True)
         return 2
-    unit = next(iter(claim.stances[0].states.values())).unit
-    show(outcome(claim.title or path.name, certificate.results, unit), as_json)
+    units = {n: q.unit for n, q in claim.stances[0].states.items()}
+    unit = next(iter(units.values()))
+    show(outcome(claim.title or path.name, certificate.results, units), as_json)
     if "split" in certificate.results["routes"]:
         found = residual_by_cell(certificate)
         if len(found) > 1:

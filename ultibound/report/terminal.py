@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+from fractions import Fraction
 from typing import Any
 
 from rich.console import Console, Group, RenderableType
@@ -18,22 +19,14 @@ MOST = 12  # rows of cells
 STYLES = {"proved": "bold green", "refuted": "bold red", "undecided": "bold yellow"}
 
 
-def outcome(title: str, results: dict[str, Any], unit: str) -> RenderableType:
-    """Quantities with what each gives away, then a row a requirement; `unit` is the state's."""
+def outcome(title: str, results: dict[str, Any], units: dict[str, str]) -> RenderableType:
+    """Quantities with what each gives away, then a row a requirement; `units` are the states'."""
     quantities = Table(title=Text(title), title_justify="left", show_edge=False, pad_edge=False)
     for heading in ("quantity", "proved", "attained", "gives away", "unit"):
         quantities.add_column(heading)
-    ((state, figures),) = results["states"].items()
-    route = results["route"]
-    rows = [
-        (f"gain k of {state}", results["gain"], "upper", "1"),
-        (f"residual ({route})", results["residual"], "upper", unit),
-        (f"ultimate bound ({route})", results["bound"], "upper", unit),
-        ("sharp bound", figures["sharp_bound"], "upper", unit),
-        ("radius of the set", results["radius"], "lower", unit),
-        ("largest push", figures["push"], "lower", unit),
-    ]
-    rows = [r for r in rows if r[1] is not None or r[0] not in ("sharp bound", "largest push")]
+    unit = next(iter(units.values()))
+    rows = _of_one(results, unit) if len(results["states"]) == 1 else _of_several(results, units)
+    rows = [r for r in rows if r[1] is not None or not r[0].startswith(("sharp bound", "largest push"))]
     for name, value, end, of in rows:
         other = "lower" if end == "upper" else "upper"
         if value is None:
@@ -44,6 +37,8 @@ def outcome(title: str, results: dict[str, Any], unit: str) -> RenderableType:
             quantities.add_row(name, *shown, of or "-")
     inside = results["set"]
     where = "no set that is mapped into itself" if inside is None else f"certified set: the {inside['kind']}"
+    if len(units) > 1:
+        where += f"; norm: {_norm(results['metric'])}"
     verdicts = Table(show_edge=False, pad_edge=False)
     for heading in ("requirement", "verdict", "value"):
         verdicts.add_column(heading, overflow="fold")
@@ -53,6 +48,50 @@ def outcome(title: str, results: dict[str, Any], unit: str) -> RenderableType:
             row.append(f"\n{r['limited_by']}")
         verdicts.add_row(Text(r["that"]), Text(r["verdict"], STYLES[r["verdict"]]), row)
     return Group(quantities, Text(where), *_routes(results, unit), Text(""), verdicts, Text(""), Text(CAUTION))
+
+
+Row = tuple[str, Any, str, str]
+
+
+def _of_one(results: dict[str, Any], unit: str) -> list[Row]:
+    ((state, figures),) = results["states"].items()
+    route = results["route"]
+    return [
+        (f"gain k of {state}", results["gain"], "upper", "1"),
+        (f"residual ({route})", results["residual"], "upper", unit),
+        (f"ultimate bound ({route})", results["bound"], "upper", unit),
+        ("sharp bound", figures["sharp_bound"], "upper", unit),
+        ("radius of the set", results["radius"], "lower", unit),
+        ("largest push", figures["push"], "lower", unit),
+    ]
+
+
+def _of_several(results: dict[str, Any], units: dict[str, str]) -> list[Row]:
+    """Gain, residual and bound in the norm, then each state in its own unit."""
+    rows: list[Row] = [
+        ("gain k in the norm", results["gain"], "upper", "1"),
+        ("residual in the norm", results["residual"], "upper", ""),
+        ("ultimate bound in the norm", results["bound"], "upper", ""),
+        ("radius of the set in the norm", results["radius"], "lower", ""),
+    ]
+    for s, figures in results["states"].items():
+        rows += [
+            (f"ultimate bound of {s}", figures["bound"], "upper", units[s]),
+            (f"radius along {s}", figures["radius"], "lower", units[s]),
+            (f"largest push of {s}", figures["push"], "lower", units[s]),
+        ]
+    return rows
+
+
+def _norm(metric: dict[str, Any]) -> str:
+    """The norm in words; the certificate has its exact matrix."""
+    if metric["kind"] == "box":
+        weights = ", ".join(f"{float(Fraction(w)):.4g} |{s}|" for s, w in metric["weights"].items())
+        return f"the largest of {weights} (errors)"
+    rows = "; ".join(" ".join(f"{float(Fraction(x)):.4g}" for x in row) for row in metric["matrix"])
+    if metric["kind"] == "polytope":
+        return f"the largest of |V e|, V = [{rows}]"
+    return f"the root of e P e, P = [{rows}]"
 
 
 def _routes(results: dict[str, Any], unit: str) -> list[RenderableType]:
