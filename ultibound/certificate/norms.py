@@ -7,9 +7,12 @@ from fractions import Fraction
 from typing import Any
 
 from ..bounding.evaluate import to_float
+from ..checker.courses import nearest
+from ..checker.derive import Ranged
 from ..checker.jacobians import Table, inside, middle_and_half
 from ..checker.matrices import Leaf, Matrix, Metric, norm_over, root
 from ..checker.numerals import decimal_up
+from ..checker.periodic import Round, variables_of
 from ..checker.rules import Line, place
 from ..checker.several import compared, keyed, largest, movements
 from .lines import IRRATIONAL, RATIONAL_CELLS, RATIONAL_TERMS, Writer, downward, upward
@@ -148,9 +151,7 @@ class NormWriter(Writer):
         table = Table(self.derivation, proves, domain, bits, self._flows())
         at = {}
         for v in table.variables:
-            x = point[v.name] if v.listed else min(max(point[v.name], v.inside[0]), v.inside[1])
-            rank = next((k for k, c in enumerate(v.cells) if c[0] <= x <= c[1]), 0)
-            at[v.name] = f"#{rank}" if v.listed else str(x)
+            at[v.name] = spelled(v, point[v.name])
         vector = [Fraction(x).limit_denominator(10**9) for x in direction]
         middle, half = middle_and_half(table.at(at))
         image = [sum((x * y for x, y in zip(row, vector, strict=True)), Fraction(0)) for row in middle]
@@ -160,6 +161,36 @@ class NormWriter(Writer):
         witness = {"bits": bits, "at": at, "direction": [str(x) for x in vector]}
         uses = [on, *([self.flow] if self.flow is not None and self._moves(proves, on) else [])]
         return self.append("stretch", proves, uses, witness, {"lower": downward(lower)})
+
+    def periodic(self, start: Sequence[float], held: Mapping[str, Fraction], steps: Sequence[Mapping[str, Fraction]],
+                 uses: list[int], bits: int) -> int:  # fmt: skip
+        """A periodic orbit near a start; raises checker.rules.Rejected, checker.reals.Undefined where none is shown."""
+        d = self.derivation
+        uses = uses + self._flow(None)
+        errors = {s: str(Fraction(e)) for s, e in zip(d.states, start, strict=True)}
+        blank = {"bits": bits, "held": dict[str, str](), "steps": [dict[str, str]()], "start": errors}
+        spans = variables_of(d)
+        witness = {
+            **blank,
+            "held": {n: spelled(spans[n], x) for n, x in held.items() if n in spans},
+            "steps": [{n: spelled(spans[n], x) for n, x in w.items() if n in spans} for w in steps],
+        }
+        used, (domain, k) = [self.proof.lines[n] for n in uses], self._contracting(uses)
+        course = Round(d, witness, used[-1].flows)
+        states = course.follow()
+        ends = [max(b[1] - a[0], a[1] - b[0]) for a, b in zip(states[0], states[-1], strict=True)]
+        near = domain.length(ends) / (1 - k ** len(course.values))
+        concludes = {}
+        for i, s in enumerate(d.states):
+            errs = [(x[i][0] - course.centre[i][1], x[i][1] - course.centre[i][0]) for x in states[:-1]]
+            concludes[s] = downward(max(map(nearest, errs)) - domain.support(i) * near)
+        return self.append("periodic", "periodic", uses, witness, concludes)
+
+    def _contracting(self, uses: list[int]) -> tuple[Metric, Fraction]:
+        domain, k = self.proof.lines[uses[0]].domain, self.proof.lines[uses[1]].concludes["gain"]
+        if domain is None or domain.metric is None:
+            raise ValueError("no metric")
+        return domain.metric, k
 
     def componentwise(self, invariant: int, slopes: int, misses: int, moves: list[int]) -> int | None:
         """A bound for each state by comparison; None where the entries do not contract."""
@@ -173,6 +204,13 @@ class NormWriter(Writer):
         concludes = {s: upward(x) for s, x in zip(d.states, bounds, strict=True)}
         witness = {"p": [str(x) for x in p], "b": [str(x) for x in b]}
         return self.append("componentwise", "componentwise", [invariant, slopes, misses, *moves], witness, concludes)
+
+
+def spelled(v: Ranged, x: Fraction) -> str:
+    """A value as a witness: a rational, or its rank in a finite list."""
+    if v.listed:
+        return f"#{next((k for k, c in enumerate(v.cells) if c[0] <= x <= c[1]), 0)}"
+    return str(min(max(x, v.inside[0]), v.inside[1]))
 
 
 def moves_of(writer: Writer) -> list[tuple[str, str]]:

@@ -41,6 +41,7 @@ class SeveralResults(Results):
         route = self.routes.get("slope", Route())
         self.gain, self.residual, self.bound = self.slopes(route.gain), route.residual, route.bound
         self.best = self.sharp = None
+        self.orbits = {s: self.farthest(s) for s in self.states}
         self.bounds = self.bounds_by_state()
         self.push = None
         self.pushes = {s: self.pushed_along(s) for s in self.states}
@@ -111,6 +112,15 @@ class SeveralResults(Results):
                 self.needed.update([number] if number else [])
         return found
 
+    def farthest(self, s: str) -> Fraction | None:
+        """How far a periodic orbit surely takes a state, again and again: proofs/several.md (6)."""
+        lines = self.lines("periodic", "periodic") if self.lasting else []
+        found = [(line.concludes[s], n) for n, line in lines]
+        if not found:
+            return None
+        self.needed.add(max(found)[1])
+        return max(max(found)[0], Fraction(0))
+
     def within(self) -> Fraction | None:
         """The least bound in the metric's norm."""
         each = [] if self.bound is None or self.bound.upper is None else [self.bound.upper]
@@ -164,15 +174,21 @@ class SeveralResults(Results):
         if r.kind == "steps":
             return self.stepped_along(r, c)
         if r.kind in ("bound", "sharp_bound") and r.state is not None:
-            bound = self.bounds.get(r.state)
-            span = None if bound is None or r.kind == "sharp_bound" else Span(None, bound)
-            return verdict(self.whole and span is not None and compared(r.relation, span, c), False, span)
+            span = None if r.kind == "sharp_bound" else self.long_run(r.state)
+            proved = self.whole and span is not None and compared(r.relation, Span(None, span.upper), c)
+            taken = Span(None, None if span is None else span.lower)
+            return verdict(proved, not self.any and opposed(r.relation, taken, c), span)
         found = {"bound": self.bound, "gain": self.gain, "residual": self.residual}.get(r.kind)
         upper = Span(None, None if found is None else found.upper)
         proved = self.whole and compared(r.relation, upper, c)
         # in a metric the claim fixes, what is surely taken settles it; in another norm it might be less
         final = self.stated() and not self.any and r.kind != "bound" and found is not None
         return verdict(proved, final and opposed(r.relation, Span(None, found.lower if found else None), c), found)
+
+    def long_run(self, s: str) -> Span | None:
+        """How far a state can be in the long run: taken by an orbit, and proved."""
+        lower, upper = self.orbits[s], self.bounds.get(s)
+        return None if lower is None and upper is None else Span(lower, upper)
 
     def stated(self) -> bool:
         return self.statement.metric == "box" or bool(self.statement.weights)
@@ -184,7 +200,8 @@ class SeveralResults(Results):
             ok = self.whole and all(less(self.bounds.get(s), self.edges[s].lower) for s in self.states)
         else:
             ok = self.whole and less(inside, self.radius.lower)
-        return verdict(ok, False, None if inside is None else Span(None, inside))
+        beyond = [s for s, edge in self.edges.items() if less(edge.upper, self.orbits[s], equal=True)]
+        return verdict(ok, bool(beyond) and not self.any, None if inside is None else Span(None, inside))
 
     def stepped_along(self, r: Any, c: tuple[Fraction, Fraction]) -> Outcome:
         """proofs/several.md (5): steps after which a state stays within `to`, the others on target at the start."""
@@ -202,8 +219,7 @@ class SeveralResults(Results):
     def by_state(self) -> dict[str, dict[str, Span | None]]:
         found: dict[str, dict[str, Span | None]] = {}
         for s in self.states:
-            bound = Span(None, self.bounds[s]) if s in self.bounds else None
-            found[s] = {"bound": bound, "sharp_bound": None, "radius": self.radii[s], "push": self.pushes[s]}
+            found[s] = {"bound": self.long_run(s), "sharp_bound": None, "radius": self.radii[s], "push": self.pushes[s]}
         return found
 
     def targets(self) -> dict[str, Span]:

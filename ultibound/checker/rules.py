@@ -43,6 +43,7 @@ SHAPES: dict[str, tuple[tuple[str, ...], tuple[str, ...] | None]] = {
     "stretch": (("at", "bits", "direction"), ("lower",)),
     "componentwise": (("b", "p"), None),  # one a state
     "invariant-rows": ((), ()),
+    "periodic": (("bits", "held", "start", "steps"), None),  # one a state
 }
 
 

@@ -12,7 +12,10 @@ from .grammar import constant
 from .jacobians import Table, middle_and_half
 from .matrices import Leaf, Matrix, Metric, comparison, entries, metric, norm_at_most
 from .numerals import Rejected, quantity
+from .periodic import periodic
 from .theorems import Line, Quantities, magnitude, parted, require
+
+OWN = ("metric", "matrix", "entries", "stretch", "componentwise", "invariant-rows", "periodic")
 
 
 def stated(d: Derivation, proves: str, used: list[Line], witness: dict[str, Any]) -> Metric:
@@ -98,7 +101,10 @@ def concluded(
 ) -> Line | None:
     """A line of a rule that is about several states; None where the rule is another's."""
     several, line = len(d.states) > 1, Line(rule, proves, (), claimed)
-    if rule in ("metric", "matrix", "entries", "stretch", "componentwise", "invariant-rows") and not several:
+    if (
+        rule in ("metric", "matrix", "entries", "stretch", "componentwise", "invariant-rows", "periodic")
+        and not several
+    ):
         raise Rejected(f"{rule}: the claim has a single state")
     if rule == "metric":
         return replace(line, metric=stated(d, proves, used, witness))
@@ -109,6 +115,8 @@ def concluded(
         return replace(line, domain=stretched(d, proves, used, witness, claimed), on_set=True)
     if rule == "componentwise":
         return replace(line, domain=componentwise(d, proves, used, witness, claimed))
+    if rule == "periodic":
+        return replace(line, domain=periodic(d, proves, used, witness, claimed))
     if rule == "invariant-rows":
         return replace(line, domain=invariant_rows(d, proves, used, claimed))
     if several and rule in ("largest-ball", "smaller-ball"):

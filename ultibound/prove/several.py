@@ -21,9 +21,10 @@ from ..checker.reals import Undefined
 from ..checker.rules import Rejected
 from ..claim import ClaimError
 from ..claim.constants import constant
-from ..claim.obligations import RANGED, Domain, Obligation
+from ..claim.obligations import RANGED, Domain, Obligation, together
 from ..contraction.metrics import Proposal, proposals
 from ..contraction.norms import Matrices, Norm, Stretched, stretched
+from ..contraction.rounds import Map, courses
 from ..contraction.samples import drawn
 from .one import COARSE, DECIDED, Attempt
 
@@ -33,6 +34,7 @@ if TYPE_CHECKING:
 SAMPLES = 300
 FEW = 3000  # leaves of a search that only compares metrics
 SPARE = 1 - 1e-9
+ORBIT_BITS = 128
 MOST_BASES = 2  # for comparisons, beside the states and the metric itself
 LOOKS = 2  # at samples: of the region, then of the ball found
 SHARES = (0.7, 0.5, 0.35, 0.25, 0.15, 0.1, 0.05, 0.02)  # of the largest ball, where that is not kept
@@ -73,6 +75,7 @@ class SeveralAttempt(Attempt):
         invariant = on if images is not None else self._kept(ball, pair, tables, moves)
         if invariant is not None and pair is not None:
             self._bound(invariant, pair)
+            self._orbits([invariant, pair])
         if invariant is not None and moves is not None:
             for table in tables:
                 w.componentwise(invariant, *table, moves)
@@ -329,6 +332,29 @@ class SeveralAttempt(Attempt):
             except Rejected:
                 continue
         return None
+
+    def _orbits(self, uses: list[int]) -> None:
+        """A periodic orbit that takes each state far from its target: proofs/several.md (6)."""
+        if not self.writer.proof.lines[uses[1]].concludes["gain"] < 1 or self.ranges.interrupted:
+            return
+        o = self.obligations
+        table = Matrices([[(x, self.ranges.runner(x, False))] for x in (o.image(s) for s in o.states)])
+        aims = [(x, self.ranges.runner(x, False)) for x in (o.target(s) for s in o.states)]
+        met = {v.name for v in table.variables}
+        extra = [v for v in together([x for x, _ in aims]) if v.name not in met]
+
+        def target(held: dict[str, Fraction]) -> list[float]:
+            rows = [np.array([[to_float(held[v.name]) for v in x.variables]]).reshape(1, -1) for x, _ in aims]
+            return [float(r(at, at, gradient=False).low[0]) for (_, r), at in zip(aims, rows, strict=True)]
+
+        def run(at: Floats) -> Floats:
+            return table.at(at[:, : len(table.variables)])[:, :, 0]
+
+        held = frozenset(n for n, q in self.claim.uncertain.items() if q.held)
+        bits = 0 if self.writer.exact("misses", uses[0]) else ORBIT_BITS
+        for course in courses(Map([*table.variables, *extra], o.states, run, target, held), self.gap):
+            with suppress(Undefined, Rejected):
+                self.writer.periodic(course.start, course.held, course.steps, uses, bits)
 
     def _remarks(self) -> list[tuple[str | None, bool]]:
         return SeveralRemarks(

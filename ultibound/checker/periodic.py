@@ -1,0 +1,103 @@
+"""Rule periodic: orbits of several states, there by contraction (proofs/several.md (6))."""
+
+from __future__ import annotations
+
+from dataclasses import replace
+from fractions import Fraction
+from typing import Any
+
+from .courses import arithmetic, nearest, valued
+from .derive import Derivation, Domain, Meaning, Ranged
+from .flows import Flows
+from .jacobians import together
+from .numerals import Rejected, quantity
+from .ranges import Ends, Evaluator
+from .theorems import Line, Quantities, parted
+
+LONGEST = 1000
+
+
+class Round:
+    """The map followed from a start that a witness states as errors, with its held and fresh values."""
+
+    def __init__(self, d: Derivation, witness: dict[str, Any], flows: Flows | None) -> None:
+        self.d, self.a = d, arithmetic(witness["bits"])
+        steps, targets = meanings(d)
+        met = [v.name for v in together([*steps, *targets])]
+        self.spans, self.order = variables_of(d), met
+        self.step, self.target = (
+            [Evaluator(d.terms, m.root, "", met, d.statement.libraries, self.a, flows) for m in several]
+            for several in (steps, targets)
+        )
+        held = {n for n, q in d.statement.uncertain.items() if q.held and n in self.spans}
+        given, each, start = witness["held"], witness["steps"], witness["start"]
+        if not isinstance(given, dict) or set(given) != held:
+            raise Rejected("held: one value for each held quantity the map and its target depend on")
+        if not isinstance(each, list) or not 0 < len(each) <= LONGEST:
+            raise Rejected(f"steps: a list of 1 to {LONGEST}")
+        if any(not isinstance(w, dict) or set(w) != set(self.spans) - held for w in each):
+            raise Rejected("steps: one value for each quantity that is not held, a step")
+        if not isinstance(start, dict) or set(start) != set(d.states):
+            raise Rejected("start: an error of each state")
+        same = {n: valued(self.spans[n], text) for n, text in given.items()}
+        self.values = [same | {n: valued(self.spans[n], text) for n, text in w.items()} for w in each]
+        self.errors = [quantity(start[s], "start") for s in d.states]
+        nothing = dict.fromkeys(d.states, (Fraction(0), Fraction(0)))
+        self.centre = self.run(self.target, nothing | self.values[0])
+
+    def run(self, evaluators: list[Evaluator], values: dict[str, Ends]) -> list[Ends]:
+        box = [values[n] for n in self.order]
+        return [self.a.ends(e.run(box, False).v) for e in evaluators]
+
+    def follow(self) -> list[list[Ends]]:
+        """The states from the first to the one after the last step."""
+        found = [[(low + e, high + e) for (low, high), e in zip(self.centre, self.errors, strict=True)]]
+        for values in self.values:
+            found.append(self.run(self.step, dict(zip(self.d.states, found[-1], strict=True)) | values))
+        return found
+
+    def starts_in(self, domain: Domain, start: list[Ends]) -> bool:
+        """Whether the start is surely in the set."""
+        if domain.ball:
+            return domain.metric is not None and domain.metric.most(self.errors) <= domain.radius
+        regions = [self.d.region(s)[1] for s in self.d.states]
+        return all(low <= x[0] and x[1] <= high for x, (low, high) in zip(start, regions, strict=True))
+
+
+def meanings(d: Derivation) -> tuple[list[Meaning], list[Meaning]]:
+    """The map and the target of each state."""
+    names = d.names()
+    found = [[d.over(names.of(f"{x}({s})")) for s in d.states] for x in ("next", "target")]
+    return found[0], found[1]
+
+
+def variables_of(d: Derivation) -> dict[str, Ranged]:
+    """What a round has to state values of; a signal that several states answer is constant."""
+    steps, targets = meanings(d)
+    found = {v.name: v for v in together([*steps, *targets])}
+    for name, (_, inside) in d.signals(set(found)).items():
+        found[name] = replace(found[name], inside=inside)
+    return {n: v for n, v in found.items() if n not in d.states}
+
+
+def periodic(d: Derivation, proves: str, used: list[Line], witness: dict[str, Any], claimed: Quantities) -> Domain:
+    """A state that a round leads nearly back to itself has a periodic orbit nearby: there, the errors are as large."""
+    used, flows = parted(used)
+    if proves != "periodic" or [x.proves for x in used] != ["invariant", "slope"]:
+        raise Rejected("a periodic orbit rests on the invariant set, and the gain on it")
+    domain, k = used[0].domain, used[1].concludes["gain"]
+    if domain is None or domain.metric is None or used[1].domain != domain or not 0 <= k < 1:
+        raise Rejected("the gain is not below 1, or refers to another set")
+    norm, course = domain.metric, Round(d, witness, flows)
+    states = course.follow()
+    if not course.starts_in(domain, states[0]):
+        raise Rejected("start: not shown to be in the set")
+    ends = [max(b[1] - a[0], a[1] - b[0]) for a, b in zip(states[0], states[-1], strict=True)]
+    near = norm.length(ends) / (1 - k ** len(course.values))
+    for i, s in enumerate(d.states):
+        errors = [(x[i][0] - course.centre[i][1], x[i][1] - course.centre[i][0]) for x in states[:-1]]
+        if not claimed.get(s, Fraction(-1)) <= max(map(nearest, errors)) - norm.support(i) * near:
+            raise Rejected(f"{s}: more than what the orbit shows")
+    if set(claimed) != set(d.states):
+        raise Rejected("concludes: a distance for each state")
+    return domain
