@@ -38,6 +38,7 @@ class Effort:
     floor: float = 0.0  # an absolute gap that is enough
     patience: int = 10**9  # leaves after which to give up, for a form that needs fewer
     side: int = 0  # 1, -1: only the upper, the lower end is wanted
+    later: float = 0.0  # seconds that each leaf will still cost once the search is over
 
 
 @dataclass(frozen=True, slots=True)
@@ -125,7 +126,7 @@ def search(runner: Runner, obligation: Obligation, magnitude: bool, effort: Effo
         if leaves + len(live) > effort.patience + 4 * len(tops):
             stopped = "patience"
             break
-        if time.monotonic() > effort.until:
+        if time.monotonic() + leaves * effort.later > effort.until:
             stopped = "seconds"
             break
         live = _bisect(boxes, live, smear.argmax(axis=1))

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import time
 from collections.abc import Callable
 from dataclasses import dataclass
 from fractions import Fraction
@@ -20,6 +21,7 @@ from ..stepmap.symbolic import compiled
 from .lines import Writer
 
 BITS = 72
+TWICE = 2.0  # a leaf found is measured in the checker's arithmetic, and checked at the end
 PATIENCE = 400  # leaves beyond which second derivatives pay
 Watch = Callable[[str, int, float], None]
 
@@ -49,6 +51,7 @@ class Encloser:
         self.interrupted = False
         self.limits: dict[str, str] = {}
         self.flows: FlowTable | None = None  # of the stance, where there are dynamics
+        self.spent = 0.0  # seconds in the checker's arithmetic, which the final check will take once more
         self._runners: dict[tuple[int, str, bool], Runner] = {}
 
     def enclose(
@@ -69,10 +72,12 @@ class Encloser:
         """
         w, name, wanted = self.writer, obligation.name, gap or self.gap
         rational, share = w.rational(name, on), 1.0
+        later = TWICE * w.leaf_seconds(name, 0 if rational else BITS, on)
         for _ in range(5):
-            found = self.search(obligation, magnitude, wanted * share, floor * share, cells, side)
+            found = self.search(obligation, magnitude, wanted * share, floor * share, cells, side, later)
             bits = 0 if rational else BITS + _extra(found)
             self.watch(f"{name}: enclosing the leaves in the checker's arithmetic", found.leaves, found.upper)
+            began = time.monotonic()
             try:
                 ends = w.range(name, found.trees, bits, on)
             except KeyboardInterrupt:
@@ -84,6 +89,7 @@ class Encloser:
                 if found.stopped:
                     return None
                 continue
+            self.spent += time.monotonic() - began
             taken = [self._point(name, p, bits, on) for p in (found.highest, found.lowest)]
             if found.stopped or _close(ends, [t[1] for t in taken if t], magnitude, wanted, floor, side):
                 break
@@ -101,7 +107,14 @@ class Encloser:
         return Proved(line, low, high, least, most, found.stopped)
 
     def search(
-        self, obligation: Obligation, magnitude: bool, gap: float, floor: float = 0.0, cells: int = 0, side: int = 0
+        self,
+        obligation: Obligation,
+        magnitude: bool,
+        gap: float,
+        floor: float = 0.0,
+        cells: int = 0,
+        side: int = 0,
+        later: float = 0.0,
     ) -> Found:
         """Witnesses for a range; of a value that takes many leaves, with the second-order form."""
 
@@ -112,7 +125,8 @@ class Encloser:
             # no second derivative by time is proved of a flow: proofs/trajectory.md (6)
             plain = obligation.by or any(v.name == PHASE for v in obligation.variables)
             patience = 10**9 if curved or plain else PATIENCE
-            effort = Effort(gap, cells or self.claim.cells, self.until, watch, floor, patience, side)
+            until = self.until - self.spent
+            effort = Effort(gap, cells or self.claim.cells, until, watch, floor, patience, side, later)
             return search(self.runner(obligation, curved), obligation, magnitude, effort)
 
         try:

@@ -2,7 +2,9 @@
 
 from __future__ import annotations
 
+import time
 from collections.abc import Mapping, Sequence
+from contextlib import suppress
 from fractions import Fraction
 from typing import Any
 
@@ -13,6 +15,7 @@ from ..checker.jacobians import Table, inside, middle_and_half
 from ..checker.matrices import Leaf, Matrix, Metric, norm_over, root
 from ..checker.numerals import decimal_up
 from ..checker.periodic import Round, variables_of
+from ..checker.reals import Undefined
 from ..checker.rules import Line, place
 from ..checker.several import compared, keyed, largest, movements
 from .lines import IRRATIONAL, RATIONAL_CELLS, RATIONAL_TERMS, Writer, downward, upward
@@ -91,6 +94,18 @@ class NormWriter(Writer):
                 cells = max(cells, len(v.cells))
         few = cells <= RATIONAL_CELLS and len(below) <= RATIONAL_TERMS
         return few and not any(d.terms.all[k][0] in IRRATIONAL for k in below)
+
+    def matrix_seconds(self, proves: str, bits: int, on: int) -> float:
+        """How long one leaf of a matrix takes in the checker's arithmetic: the first cell, the second time round."""
+        domain, began = self.proof.lines[on].domain, time.monotonic()
+        if domain is None or domain.metric is None:
+            raise ValueError("no set")
+        with suppress(Undefined):
+            table = Table(self.derivation, proves, domain, bits, self._flows())
+            for _ in range(2):
+                began = time.monotonic()
+                norm_over(domain.metric, table.leaf([v.cells[0] for v in table.variables], "c"))
+        return time.monotonic() - began
 
     def leaves(self, proves: str, trees: Sequence[str], bits: int, on: int) -> list[Leaf]:
         """The leaves of a matrix over the set; raises checker.reals.Undefined where one has no enclosure."""

@@ -215,7 +215,7 @@ def stretched(matrices: Matrices, norm: Norm, effort: Effort) -> Stretched:
         if not len(open_):
             break
         room = effort.cells - leaves
-        if room <= 0 or time.monotonic() > effort.until:
+        if room <= 0 or time.monotonic() + leaves * effort.later > effort.until:
             stopped = "cells" if room <= 0 else "seconds"
             break
         worst = open_[np.argsort(-upper[open_], kind="stable")][: min(BATCH, room)]

@@ -56,16 +56,20 @@ def _proved(claim: Claim, watch: Watch) -> Certificate:
     until = time.monotonic() + to_float(claim.seconds)
     sharp = claim.route == "curve" or any(r.kind == "sharp_bound" for r in claim.requirements)
     known: Known = {}
+    kept: Attempt | None = None
     while True:
         attempt = best(kind(claim, gap, until, watch, sharp, known=known))
-        if attempt.curve_may_help and not attempt.ranges.interrupted and time.monotonic() < until:
+        late = time.monotonic() + attempt.ranges.spent > until
+        if kept is None or attempt.decided > kept.decided or (attempt.decided == kept.decided and not late):
+            kept = attempt  # what time cut short decides less
+        if attempt.curve_may_help and not attempt.ranges.interrupted and not late:
             sharp = True
             continue
         gap *= SHARPER
         cut = any(x in STOPS for x in attempt.ranges.limits.values())  # a smaller gap would meet the same limit
-        if cut or not attempt.pursue or gap < FINEST or attempt.ranges.interrupted or time.monotonic() > until:
+        if cut or not attempt.pursue or gap < FINEST or attempt.ranges.interrupted or late:
             break
-    certificate = attempt.certificate
+    certificate = kept.certificate
     verdict = _checked(certificate, attempt)
     if verdict.status != "valid":
         raise InternalError(f"{verdict.place}: {verdict.reason}")

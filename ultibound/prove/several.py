@@ -2,8 +2,10 @@
 
 from __future__ import annotations
 
+import time
 from collections.abc import Iterator
 from contextlib import suppress
+from dataclasses import replace
 from fractions import Fraction
 from typing import TYPE_CHECKING
 
@@ -12,7 +14,7 @@ import numpy as np
 from ..bounding.evaluate import to_float
 from ..bounding.intervals import Floats
 from ..bounding.search import Effort
-from ..certificate.enclosing import BITS, Proved
+from ..certificate.enclosing import BITS, TWICE, Proved
 from ..certificate.lines import downward, upward
 from ..certificate.norms import NormWriter, moves_of
 from ..certificate.several import SeveralRemarks
@@ -211,17 +213,20 @@ class SeveralAttempt(Attempt):
             moved[:, k] = middle + error[:, i] * share
         return moved
 
-    def _searched(self, proves: str, domain: Domain, norm: Metric, gap: float, cells: int) -> Stretched:
+    def _searched(
+        self, proves: str, domain: Domain, norm: Metric, gap: float, cells: int, later: float = 0.0
+    ) -> Stretched:
         def watch(leaves: int, high: float) -> None:
             self.watch(f"{proves} of {len(self.obligations.states)} states", leaves, high)
 
         matrices = self._matrices(proves, domain, norm)
         form = Norm(floats(norm.rows), floats(norm.inverse) if proves == "slopes" else None, norm.kind == "ellipsoid")
+        effort = Effort(gap, cells, self.ranges.until - self.ranges.spent, watch, later=later)
         try:
-            return stretched(matrices, form, Effort(gap, cells, self.until, watch))
+            return stretched(matrices, form, effort)
         except KeyboardInterrupt:
             self.ranges.interrupt()
-            return stretched(matrices, form, Effort(gap, cells, self.until, watch))
+            return stretched(matrices, form, replace(effort, until=0.0))
 
     def _size(self, p: Proposal, ball: Domain) -> float:
         """The largest share of its room that a state's bound takes; inf where the ball is not kept (estimates)."""
@@ -252,8 +257,10 @@ class SeveralAttempt(Attempt):
         """The line of a norm over the set, with a stretch that attains nearly as much; its trees and bits."""
         w, share = self.writer, 1.0
         bits = 0 if w.exact(proves, on) else BITS
+        later = TWICE * w.matrix_seconds(proves, bits, on)
         for _ in range(4):
-            found = self._searched(proves, self.domain, self.norm, self.gap * share, self.claim.cells)
+            found = self._searched(proves, self.domain, self.norm, self.gap * share, self.claim.cells, later)
+            began = time.monotonic()
             try:
                 leaves = w.leaves(proves, found.trees, bits, on)
                 line = w.matrix(proves, found.trees, bits, on, leaves)
@@ -264,6 +271,7 @@ class SeveralAttempt(Attempt):
                 share /= 16
                 continue
             self.leaves[proves] = leaves
+            self.ranges.spent += time.monotonic() - began
             self.ranges.limits[proves] = found.stopped
             upper = to_float(w.proof.lines[line].concludes["norm"])
             if found.stopped or upper - found.upper <= self.gap * max(found.upper, 1e-300) or share < 0.1:
