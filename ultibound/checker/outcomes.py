@@ -193,6 +193,13 @@ class SeveralResults(Results):
     def stated(self) -> bool:
         return self.statement.metric == "box" or bool(self.statement.weights)
 
+    def ranged(self, number: int, r: Any) -> Outcome:
+        """What a point of a ball breaks may hold in the ball of another metric, unless the claim fixes the metric."""
+        found, line = super().ranged(number, r), self.one("range", f"require[{number}]")
+        if found.verdict == "refuted" and not (self.kind == "region" or self.stated()):
+            return found if line is not None and not line.on_set else Outcome("undecided", found.value, found.attained)
+        return found
+
     def settles(self) -> Outcome:
         """proofs/ultimate-bound.md: a bound inside the set, in its norm or state by state."""
         inside = self.within()

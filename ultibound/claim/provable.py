@@ -54,6 +54,10 @@ def not_yet(claim: Claim) -> str | None:
         return "route: sector cannot be proved yet; use slope, split, curve or best"
     if claim.route == "split" and not claim.correction:
         return "route: split tells a correction apart; name it in `correction`, or use another route"
+    for name, w in claim.weights.items() if several else ():
+        low, high = constant(w, claim.values)
+        if low != high or low <= 0:
+            return f"metric.weights.{name}: has to be a rational number above 0, to be stated exactly"
     if not several and any(set(constant(w, claim.values)) != {Fraction(1)} for w in claim.weights.values()):
         return "metric.weights: only the weight 1 can be used with a single state yet; remove the table"
     for number, r in enumerate(claim.requirements, 1):

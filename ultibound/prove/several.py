@@ -47,6 +47,7 @@ class SeveralAttempt(Attempt):
 
     writes: type[Writer] = NormWriter
     writer: NormWriter
+    others: list[Proposal]
     chosen: Proposal
     norm: Metric
     domain: Domain
@@ -113,14 +114,7 @@ class SeveralAttempt(Attempt):
             for p in self._proposed(domain):
                 norm = metric(p.kind, p.rows, p.inverse, n)
                 ball = self._ball(norm, self._largest(norm))
-                if images is not None:
-                    self.chosen, self.norm, self.domain = (
-                        p,
-                        norm,
-                        Domain("region", ball.radius, spans[0], targets=spans),
-                    )
-                    return
-                size = self._size(p, ball)
+                size = self._size(p, ball) if images is None else 0.0  # the region is the set in any metric
                 if best is None or size < best[0]:
                     best = size, p, norm, ball
                 if size < np.inf:
@@ -129,13 +123,31 @@ class SeveralAttempt(Attempt):
                 break
             domain = best[3] if best is not None else domain
         if best is None:
-            identity = tuple(tuple(Fraction(int(i == j)) for j in range(n)) for i in range(n))
-            p = Proposal("box", identity, identity, np.inf, np.inf, 0.0)
-            norm = metric("box", identity, identity, n)
+            p = self._plain()
+            norm = metric(p.kind, p.rows, p.inverse, n)
             best = np.inf, p, norm, self._ball(norm, self._largest(norm))
         _, self.chosen, self.norm, self.domain = best
-        if best[0] == np.inf:
+        if images is not None:
+            self.domain = Domain("region", self.domain.radius, spans[0], targets=spans)
+        elif best[0] == np.inf:
             self._shrunk()
+
+    def _weights(self) -> tuple[Fraction, ...] | None:
+        """Of a box that the claim asks for: 1 where it names none."""
+        claim = self.claim
+        if claim.metric != "box" and not claim.weights:
+            return None
+        given = {s: constant(w, claim.values)[0] for s, w in claim.weights.items()}
+        return tuple(given.get(s, Fraction(1)) for s in self.obligations.states)
+
+    def _plain(self) -> Proposal:
+        """The states as they are, or by the claim's weights, where no metric is proposed."""
+        n = len(self.obligations.states)
+        kind, weights = self.claim.metric, self._weights()
+        scale = weights or (Fraction(1),) * n
+        rows = tuple(tuple(scale[i] if i == j else Fraction(0) for j in range(n)) for i in range(n))
+        inverse = tuple(tuple(1 / scale[i] if i == j else Fraction(0) for j in range(n)) for i in range(n))
+        return Proposal("box" if weights or kind == "auto" else kind, rows, inverse, np.inf, np.inf, 0.0)
 
     def _shrunk(self) -> None:
         """A smaller ball that is kept, if the largest is not."""
@@ -151,16 +163,13 @@ class SeveralAttempt(Attempt):
         slopes, misses = self._matrices("slopes", domain), self._matrices("misses", domain)
         jacobians, missed = (self._sampled(m, rng) for m in (slopes, misses))
         room = np.array([to_float(x) for x in self._rooms()])
-        claim = self.claim
-        kind, weights = claim.metric, None
-        if kind == "box" or claim.weights:
-            one = (Fraction(1), Fraction(1))
-            ends = [
-                constant(claim.weights[s], claim.values) if s in claim.weights else one for s in self.obligations.states
-            ]
-            kind, weights = "box", tuple(x[0] for x in ends)
-        self.others = proposals(jacobians, missed[:, :, 0], room)
-        return proposals(jacobians, missed[:, :, 0], room, kind, weights) if kind != "auto" else self.others
+        self.others = []
+        if not (room > 0).all():
+            return []
+        self.others, weights = proposals(jacobians, missed[:, :, 0], room), self._weights()
+        if weights is None and self.claim.metric == "auto":
+            return self.others
+        return proposals(jacobians, missed[:, :, 0], room, "box" if weights else self.claim.metric, weights)
 
     def _sampled(self, matrices: Matrices, rng: np.random.Generator) -> Floats:
         at = drawn(Obligation("samples", 0, "", tuple(matrices.variables), False), SAMPLES, rng)
