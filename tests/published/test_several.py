@@ -89,7 +89,9 @@ class TestOneMatrixThatIsNotNormal:
         return Leaf(a, (), tuple((Fraction(0),) * 2 for _ in range(2)))
 
     def test_a_rate_near_the_spectral_radius_is_reached_and_never_passed(self) -> None:
-        text = linear(self.A, ["0", "0"], "settles", "gain <= 0.5101", "gain <= 1/2", more='[metric]\nkind = "ellipsoid"\n')
+        text = linear(
+            self.A, ["0", "0"], "settles", "gain <= 0.5101", "gain <= 1/2", more='[metric]\nkind = "ellipsoid"\n'
+        )
         r = proved(text).results
         assert r["metric"]["kind"] == "ellipsoid"
         assert Fraction(1, 2) < ends(r["gain"])[1] <= Fraction("0.5101")
