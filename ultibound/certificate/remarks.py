@@ -19,6 +19,7 @@ STOPS = {
     "cells": "stopped at the limit of cells",
     "seconds": "stopped at the limit of seconds",
     "precision": "stopped at the precision of the search",
+    "jumps": "derivatives that jump inside a leaf keep its bound apart from what is taken, however small it is",
 }
 
 

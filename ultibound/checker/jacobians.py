@@ -34,9 +34,12 @@ class Table:
         met = [v.name for v in self.variables]
         constant = d.signals(set(met))  # of several states that answer a signal, one constant serves them all
         self.variables = [replace(v, inside=constant[v.name][1]) if v.name in constant else v for v in self.variables]
-        self.rows = [
-            [Evaluator(d.terms, m.root, m.by, met, d.statement.libraries, self.a, flows) for m in row]
-            for row in meanings
+        self.roots = [[m.root for m in row] for row in meanings]
+        self.below = {k: d.terms.below(k) for row in self.roots for k in row}
+        self.columns = [  # entries of a column have the same marked name, and share most of their terms
+            Evaluator(d.terms, first, column[0].by, met, d.statement.libraries, self.a, flows, others)
+            for column in zip(*meanings, strict=True)
+            for first, *others in [[m.root for m in column]]
         ]
 
     def leaves(self, trees: Any) -> Iterator[Leaf]:
@@ -50,7 +53,8 @@ class Table:
 
     def leaf(self, box: Box, form: str) -> Leaf:
         """proofs/matrix.md (2): the affine part of each entry about the middle, and what is left."""
-        parts = [[self.entry(e, box, form) for e in row] for row in self.rows]
+        columns = [self.column(e, [row[j] for row in self.roots], box, form) for j, e in enumerate(self.columns)]
+        parts = list(zip(*columns, strict=True))
         slopes = tuple(
             tuple(tuple(p[1].get(k, Fraction(0)) for p in row) for row in parts)
             for k in range(len(box))
@@ -62,25 +66,38 @@ class Table:
         )
         return Leaf(centre, slopes, rest)
 
-    def entry(self, e: Evaluator, box: Box, form: str) -> tuple[Fraction, dict[int, Fraction], Fraction]:
-        """Middle, slopes times half widths, and the rest of one entry over a box."""
-        jet = e.run(box, form == "c")
-        low, high = self.a.ends(e.wanted(jet))
-        direct = (low + high) / 2, dict[int, Fraction](), (high - low) / 2
-        if form == "d" or (e.by and (e.several or any(len(x) > 1 for x in e.sides.values()))):
-            return direct  # a derivative that may jump has no other form
-        found = {k: self.a.ends(slope) for k, slope in e.slopes(jet).items() if slope is not None}
-        low, high = self.a.ends(e.wanted(e.run([((x + y) / 2,) * 2 for x, y in box], False, part=True)))
-        half = {k: (box[k][1] - box[k][0]) / 2 for k in found}
-        rest = (high - low) / 2 + sum(((q - p) / 2 * half[k] for k, (p, q) in found.items()), Fraction(0))
-        if direct[2] <= rest:
-            return direct
-        return (low + high) / 2, {k: (p + q) / 2 * half[k] for k, (p, q) in found.items() if half[k]}, rest
+    def column(
+        self, e: Evaluator, roots: list[int], box: Box, form: str
+    ) -> list[tuple[Fraction, dict[int, Fraction], Fraction]]:
+        """Middle, slopes times half widths, and the rest of each entry of a column over a box."""
+        jets = e.all_of(box, form == "c")
+        found = []
+        for k in roots:
+            low, high = self.a.ends(e.wanted(jets[k]))
+            found.append(((low + high) / 2, dict[int, Fraction](), (high - low) / 2))
+        # a derivative that may jump has no other form
+        smooth = [i for i, k in enumerate(roots) if form == "c" and not (e.by and e.jumps(self.below[k]))]
+        if not smooth:
+            return found
+        centre = e.all_of([((x + y) / 2,) * 2 for x, y in box], False, part=True)
+        for i in smooth:
+            slopes = {v: self.a.ends(x) for v, x in e.slopes(jets[roots[i]]).items() if x is not None}
+            low, high = self.a.ends(e.wanted(centre[roots[i]]))
+            half = {v: (box[v][1] - box[v][0]) / 2 for v in slopes}
+            rest = (high - low) / 2 + sum(((q - p) / 2 * half[v] for v, (p, q) in slopes.items()), Fraction(0))
+            if rest < found[i][2]:
+                moving = {v: (p + q) / 2 * half[v] for v, (p, q) in slopes.items() if half[v]}
+                found[i] = (low + high) / 2, moving, rest
+        return found
 
     def at(self, at: Any) -> list[list[Ends]]:
         """All entries at a point of the set."""
         box = self.place(at)
-        return [[self.a.ends(e.wanted(e.run(box, False, touching=True))) for e in row] for row in self.rows]
+        jets = [e.all_of(box, False, touching=True) for e in self.columns]
+        return [
+            [self.a.ends(e.wanted(jet[k])) for k, e, jet in zip(row, self.columns, jets, strict=True)]
+            for row in self.roots
+        ]
 
     def place(self, at: Any) -> Box:
         if not isinstance(at, dict) or set(at) != {v.name for v in self.variables}:

@@ -6,7 +6,7 @@ proofs/forms.md (5) and (6), proofs/corners.md, proofs/reading.md.
 from __future__ import annotations
 
 from bisect import bisect_left, bisect_right
-from collections.abc import Callable, Sequence
+from collections.abc import Callable, Iterable, Sequence
 from fractions import Fraction
 from itertools import product
 from typing import Any, Protocol
@@ -60,7 +60,9 @@ class Evaluator:
         libraries: Sequence[Library],
         arithmetic: Arithmetic,
         flows: Trajectory | None = None,
+        beside: Sequence[int] = (),
     ) -> None:
+        """`beside`: further roots, which `all_of` evaluates along with it."""
         self.terms, self.all, self.root, self.by, self.names, self.a = terms, terms.all, root, by, names, arithmetic
         self.flows = flows
         self.columns = {c: library for library in libraries for c in library.columns}
@@ -75,7 +77,7 @@ class Evaluator:
         self.chosen: dict[int, int] = {}  # the branch each of them is held to
         self.touching = False
         self.axes: dict[int, Evaluator | None] = {}
-        for k in terms.below(root):
+        for k in sorted({k for each in (root, *beside) for k in terms.below(each)}):
             op, args, _ = self.all[k]
             if op == "variable" or op == "mark" or any(a not in self.fixed for a in args):
                 self.moving.append(k)
@@ -89,13 +91,21 @@ class Evaluator:
         `part` is for a part of the box run before: a derivative is then taken on the same branch, though the part
         may be a face on a grid line. `touching` counts every closed cell that a box touches (proofs/attained.md).
         """
+        return self.all_of(box, gradient, part, touching)[self.root]
+
+    def all_of(self, box: Box, gradient: bool, part: bool = False, touching: bool = False) -> dict[int, Jet]:
+        """As `run`, the jets of all terms by rank."""
         self.several, self.touching, self.sides = False, touching, {}
         if not (part and self.second()):
             self.branch = {}
         jets = dict(self.fixed)
         for k in self.moving:
             jets[k] = self.term(k, jets, box, gradient)
-        return jets[self.root]
+        return jets
+
+    def jumps(self, below: Iterable[int]) -> bool:
+        """Whether among these terms, in the last run, a corner met both branches or a reading several cells."""
+        return any(len(self.sides.get(k, ())) > 1 or several(self.branch.get(k, ())) for k in below)
 
     def second(self) -> bool:
         """Whether derivatives of a derivative are carried."""

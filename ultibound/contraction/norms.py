@@ -11,6 +11,7 @@ from collections.abc import Callable, Sequence
 from dataclasses import dataclass
 from fractions import Fraction
 from itertools import product
+from typing import Any
 
 import numpy as np
 
@@ -23,6 +24,8 @@ BATCH = 64
 MOST_SLOPES = 8  # as in the checker: further ones count as rest
 CORNERS = 2_000_000  # numbers of all corners of a batch at once
 FINEST = 2.0**-40  # of a cell, below which no box is bisected
+STALLED = 0.9  # of what is left to the gap: where twice as many leaves leave as much at a jump, it stays
+FIRST_LOOK = 128  # leaves
 
 
 @dataclass(frozen=True, slots=True)
@@ -64,10 +67,7 @@ class Affine:
     slopes: Floats
     rest: Floats
     score: Floats  # (boxes, variables): what bisecting a variable may gain
-
-    def only(self, k: int) -> Affine:
-        one = slice(k, k + 1)
-        return Affine(self.centre[one], self.slopes[one], self.rest[one], self.score[one])
+    jumps: Any  # (boxes,): whether a derivative may jump inside
 
 
 class Matrices:
@@ -88,6 +88,7 @@ class Matrices:
         middle, half = (low + high) / 2, (high - low) / 2
         centre, rest = np.zeros(shape), np.zeros(shape)
         slopes, score = np.zeros((boxes, count, *shape[1:])), np.zeros((boxes, count))
+        jumps = np.zeros(boxes, bool)
         with np.errstate(invalid="ignore", over="ignore"):
             for i, row in enumerate(self.rows):
                 for j, e in enumerate(row):
@@ -102,12 +103,13 @@ class Matrices:
                     direct = (run.high - run.low) / 2 <= total
                     if e.obligation.by:
                         direct |= run.split | run.open()
+                        jumps |= run.split | run.open()
                     direct |= ~np.isfinite(total) | ~np.isfinite(linear).all(axis=1)
                     centre[:, i, j] = np.where(direct, (run.low + run.high) / 2, (here.low + here.high) / 2)
                     rest[:, i, j] = np.where(direct, (run.high - run.low) / 2, total)
                     slopes[:, e.columns, i, j] = np.where(direct[:, None], 0.0, linear)
                     score[:, e.columns] += np.where(direct[:, None], whole, left)
-        return Affine(centre, slopes, rest, score)
+        return Affine(centre, slopes, rest, score, jumps)
 
     def at(self, x: Floats) -> Floats:
         """The matrices at points (points, variables), as (points, n, c)."""
@@ -188,7 +190,8 @@ def stretched(matrices: Matrices, norm: Norm, effort: Effort) -> Stretched:
     high = np.array([[to_float(c[1]) for c in top] for top in tops]).reshape(shape)
     inside = np.array([[to_float(v.inside[0]), to_float(v.inside[1])] for v in matrices.variables]).reshape(-1, 2)
     least = (high - low).max(axis=0, initial=0.0) * FINEST
-    upper, score = np.zeros(0), np.zeros((0, shape[1]))
+    upper, score, jumps = np.zeros(0), np.zeros((0, shape[1])), np.zeros(0, bool)
+    left, look = np.inf, FIRST_LOOK
     split, child = [-1] * len(tops), [-1] * len(tops)
     best, inner, at, stopped, done = -np.inf, -np.inf, np.zeros(shape[1]), "", 0
     fixed = np.array([v.listed for v in matrices.variables], bool)
@@ -198,6 +201,7 @@ def stretched(matrices: Matrices, norm: Norm, effort: Effort) -> Stretched:
             a = matrices.affine(low[part], high[part])
             found, where = over_boxes(norm, a)
             upper, score = np.concatenate([upper, found]), np.concatenate([score, a.score])
+            jumps = np.concatenate([jumps, a.jumps])
             middle, half = (low[part] + high[part]) / 2, (high[part] - low[part]) / 2
             points = np.where(fixed, middle, np.clip(middle + where * half, inside[:, 0], inside[:, 1]))
             best = max(best, float(_finite(size(norm, matrices.at(points))).max()))
@@ -214,6 +218,12 @@ def stretched(matrices: Matrices, norm: Norm, effort: Effort) -> Stretched:
         effort.watch(leaves, float(upper[leaf].max()))
         if not len(open_):
             break
+        if leaves >= look:
+            worst = open_[np.argmax(upper[open_])]
+            if jumps[worst] and upper[worst] - best > STALLED * left:
+                stopped = "jumps"
+                break
+            left, look = float(upper[worst]) - best, 2 * leaves
         room = effort.cells - leaves
         if room <= 0 or time.monotonic() + leaves * effort.later > effort.until:
             stopped = "cells" if room <= 0 else "seconds"

@@ -1,0 +1,65 @@
+"""Random stable matrices of two to six states against scipy: the rate that is proved, the bounds against exact sums."""
+
+from __future__ import annotations
+
+import os
+from collections.abc import Callable
+from fractions import Fraction
+
+import numpy as np
+import pytest
+from scipy.linalg import solve_discrete_lyapunov
+
+from tests.conftest import ends, proved
+from tests.published.test_several import bounds, linear, verdicts
+
+COUNT = 50
+EVERY = 1 if os.environ.get("ULTIBOUND_LONG") else 3
+
+
+def drawn(seed: int) -> tuple[np.ndarray, np.ndarray]:
+    """A matrix to three decimals with spectral radius below 1, and magnitudes of disturbances."""
+    rng = np.random.default_rng(seed)
+    n = 2 + seed % 5
+    a = rng.standard_normal((n, n))
+    a *= rng.uniform(0.3, 0.95) / np.abs(np.linalg.eigvals(a)).max()
+    return np.round(a, 3), np.round(rng.uniform(0.001, 0.02, n), 4)
+
+
+def least_rate_in_reach(a: np.ndarray) -> float:
+    """The rate of P = I + AᵀPA/k², k a little above the spectral radius: sup of eᵀAᵀPAe/eᵀPe, by scipy."""
+    k = np.abs(np.linalg.eigvals(a)).max() + 5e-4
+    p = solve_discrete_lyapunov((a / k).T, np.eye(len(a)))
+    v = np.linalg.cholesky(p).T
+    return float(np.linalg.norm(v @ a @ np.linalg.inv(v), 2))
+
+
+@pytest.mark.parametrize("seed", range(0, COUNT, EVERY))
+def test_rate_near_the_spectral_radius(seed: int) -> None:
+    a, _ = drawn(seed)
+    radius, reached = float(np.abs(np.linalg.eigvals(a)).max()), least_rate_in_reach(a)
+    assert radius <= reached < radius + 1e-3
+    rows = [[str(Fraction(x).limit_denominator(1000)) for x in row] for row in a]
+    r = proved(linear(rows, ["0"] * len(a), "settles", "gain < 1")).results
+    assert verdicts(r) == ["proved"] * 2
+    assert radius - 1e-9 <= float(ends(r["gain"])[1]) <= radius + 1e-3
+
+
+def test_bounds_hold_the_exact_sums(record_property: Callable[[str, str], None]) -> None:
+    """sup |e_s| in the long run is Σ_n |(Aⁿ)_s·| w: below every bound, and the best of them not far above it."""
+    ratios: dict[int, list[float]] = {}
+    for seed in range(0, COUNT, EVERY):
+        a, w = drawn(seed)
+        exact, power = np.zeros(len(a)), np.eye(len(a))
+        for _ in range(600):
+            exact, power = exact + np.abs(power) @ w, power @ a
+        rows = [[str(Fraction(x).limit_denominator(1000)) for x in row] for row in a]
+        r = proved(linear(rows, [str(Fraction(x).limit_denominator(10**4)) for x in w], "settles")).results
+        assert verdicts(r) == ["proved"], seed
+        found = np.array([float(b) for b in bounds(r)])
+        assert np.all(found >= exact * (1 - 1e-9)), seed
+        ratios.setdefault(len(a), []).extend(found / exact)
+    table = ["states  bounds   median    worst   bound/exact"]
+    table += [f"{n:6d}{len(x):8d}{np.median(x):9.3f}{max(x):9.3f}" for n, x in sorted(ratios.items())]
+    record_property("table", "\n".join(table))
+    assert all(np.median(x) < 2.5 and max(x) < 12 for x in ratios.values())

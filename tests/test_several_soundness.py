@@ -1,0 +1,32 @@
+"""A seeded campaign of random claims of two and three states against trajectories steered at their bounds."""
+
+from __future__ import annotations
+
+import os
+from collections.abc import Callable
+
+import pytest
+
+from tests.several_campaign import KINDS, Tally, run
+
+LONG = bool(os.environ.get("ULTIBOUND_LONG"))
+CLAIMS, BLOCK = 140 if LONG else 14, len(KINDS)
+
+
+@pytest.fixture(scope="module")
+def tally() -> Tally:
+    return Tally()
+
+
+@pytest.mark.parametrize("first", range(0, CLAIMS, BLOCK))
+def test_nothing_simulated_goes_beyond_what_is_proved(first: int, tally: Tally) -> None:
+    for seed in range(first, first + BLOCK):
+        run(seed, tally)
+
+
+def test_most_claims_that_contract_get_bounds(tally: Tally, record_property: Callable[[str, str], None]) -> None:
+    """At least three in four of the claims that simulation shows to contract."""
+    record_property("table", tally.table())
+    assert tally.steps >= 25_000 * CLAIMS
+    assert tally.contracting > CLAIMS / 2
+    assert tally.bounded >= 0.75 * tally.contracting
