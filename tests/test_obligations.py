@@ -12,6 +12,7 @@ from tests.corpus import CASES, Case
 from tests.stances import GAITS, PARTS
 from ultibound.checker.derive import Derivation
 from ultibound.checker.derive import Domain as CheckerDomain
+from ultibound.checker.matrices import metric
 from ultibound.checker.rules import SHAPES
 from ultibound.checker.statement import read_statement
 from ultibound.checker.theorems import THEOREMS
@@ -21,6 +22,53 @@ from ultibound.claim.provable import not_yet
 
 PROOFS = Path(__file__).parents[1] / "proofs"
 PROVABLE = [c for c in CASES if c.accepted and not_yet(parse_claim(c.text, c.settings, c.data, "c")) is None]
+
+SEVERAL = {
+    "a moving target": """format = 1
+[state]
+x = [-0.3, 0.3]
+v = [-1, 1]
+[uncertain]
+T = { values = [0.3, 0.4] }
+d = ["-sqrt(2)/100", 0.01]
+c = { range = [-0.1, 0.1], held = true, change = 0.01 }
+[define]
+p = "x/2 + (v - c)/4 + d + sin(x*v)/20"
+[next]
+x = "x - p*T"
+v = "v/3 + target(v)/2 + abs(p)/9"
+[target]
+x = "c/4"
+v = "c + c**2"
+[[require]]
+that = "value(next(v) - v) < 1"
+over = { x = [-0.1, 0.1] }
+[[require]]
+that = "sensitivity(v, p) < 0"
+[[require]]
+that = "always(x <= v + 9)"
+over = { c = [0, 0.05] }
+""",
+    "a library": """format = 1
+[state]
+a = [0, 1]
+b = ["1/3", "sqrt(2)"]
+[library]
+file = "t.csv"
+at = { p = "a", q = "b/2" }
+[next]
+a = "a/2 + u/9"
+b = "b/3 + u/5 + 0.2"
+[target]
+a = "sqrt(2)/3"
+b = "target(a)"
+[[require]]
+that = "value(u)"
+""",
+}
+for several in SEVERAL:
+    table = {"t.csv": "p,q,u\n0,0,1\n0,1,2\n0.5,0,2\n0.5,1,2\n1,0,1\n1,1,3\n"} if several == "a library" else {}
+    PROVABLE.append(Case(f"several: {several}", SEVERAL[several], True, table))
 
 
 def spelled_out(graph: list[tuple[str, tuple[int, ...], object]], root: int) -> tuple[object, ...]:
@@ -47,21 +95,28 @@ def test_both_lists_mean_the_same(case: Case, ball: bool) -> None:
     claim = parse_claim(case.text, case.settings, case.data, "c")
     o = Obligations(claim)
     d = Derivation(read_statement(claim.text, claim.settings, claim.data))
-    target = (Fraction(1, 2), Fraction(1, 2))
+    target, states = (Fraction(1, 2), Fraction(1, 2)), tuple(claim.stances[0].states)
     mine = Domain("ball" if ball else "region", Fraction(1, 8), target)
     theirs = CheckerDomain(ball, Fraction(1, 8), target)
-    listed: list[Obligation] = [
-        o.target(),
-        o.image(),
-        o.miss(),
-        o.slope(mine),
-        *(o.target_slope(h) for h in o.moving()),
-    ]
+    several = len(states) > 1
+    if several:  # a box with the weights 2, 3, ...: along each state the ball reaches to a half, a third, ...
+        n = range(len(states))
+        rows = tuple(tuple(Fraction(i + 2 if i == j else 0) for j in n) for i in n)
+        inverse = tuple(tuple(Fraction(i == j, i + 2) for j in n) for i in n)
+        wide = tuple(Fraction(1, i + 2) for i in n)
+        spans = tuple((Fraction(1, i + 2), Fraction(1, 2)) for i in n)
+        mine = replace(mine, targets=spans, wide=wide, beyond=Fraction(1, 16))
+        norm = metric("box", rows, inverse, len(states))
+        theirs = replace(theirs, targets=spans, metric=norm, beyond=Fraction(1, 16))
+    listed: list[Obligation] = [q for s in states for q in (o.target(s), o.image(s), o.miss(s))]
+    listed += [o.slope(mine, s, x) for s in states for x in states]
+    listed += [o.target_slope(h, s) for s in states for h in o.moving(s)]
     listed += [o.requirement(n, mine) for n, r in enumerate(claim.requirements, 1) if r.kind in RANGED]
     radii = (Fraction(1, 16), Fraction(1, 8))
-    listed += [*(o.shell(n, mine, radii) for n in (1, 2)), o.line(mine, Fraction(1, 3))]
+    if not several:
+        listed += [*(o.shell(n, mine, radii) for n in (1, 2)), o.line(mine, Fraction(1, 3))]
     cut = replace(theirs, radii=radii, slope=Fraction(1, 3))
-    if claim.correction:
+    if claim.correction and not several:
         listed += [o.split_slope(mine), o.split_residual(mine)]
     gates = [(g.op, g.args, g.value if g.op in ("number", "power") else g.name or None) for g in o.graph.gates]
     for obligation in listed:
@@ -71,7 +126,7 @@ def test_both_lists_mean_the_same(case: Case, ball: bool) -> None:
             (v.name, v.cells, v.listed) for v in meaning.variables
         ]
         assert spelled_out(gates, obligation.root) == spelled_out(d.terms.all, meaning.root)
-    assert o.region() == d.region()
+    assert [o.region(s) for s in states] == [d.region(s) for s in states]
 
 
 @pytest.mark.parametrize("name", PARTS)
