@@ -1,0 +1,274 @@
+"""Claims of two states at exact equality: norms, balls, matrices, comparisons, and what they amount to.
+
+As in `test_boundaries.py`, whose way of writing certificates this shares; the maps are linear and rational, but for
+one, so that every number is known and a hair less of it is refused.
+"""
+
+from __future__ import annotations
+
+import itertools
+from collections.abc import Callable, Sequence
+from fractions import Fraction as Q
+from typing import Any
+
+import pytest
+
+import ultibound.checker
+from tests.checker.test_boundaries import GONE, STEP, Case, Draft, Entries, Question, but, derivation, refuses, sealed
+from tests.checker.test_stance_boundaries import STILL, limited
+
+CASES: dict[str, Question] = {}
+
+
+def unit(question: Question) -> Question:
+    """Registers assertions about functions of the checker."""
+    assert question.__name__ not in CASES
+    CASES[question.__name__] = question
+    return question
+
+
+def accept(name: str, entries: Entries, leaves: int | None = None) -> None:
+    assert name not in CASES, name
+    CASES[name] = Case(sealed(entries), "valid", leaves=leaves)
+
+
+def reject(name: str, entries: Entries, place: str, reason: str) -> None:
+    assert name not in CASES, name
+    CASES[name] = Case(sealed(entries), "invalid", place, reason)
+
+
+# tables of numbers: one line each reads better
+# fmt: off
+
+ONE = [["1", "0"], ["0", "1"]]
+WEIGHTS, UNWEIGHTED = [["1", "0"], ["0", "2"]], [["1", "0"], ["0", "1/2"]]
+SLANTED, UPRIGHT = [["2", "1"], ["2", "-1"]], [["1/4", "1/4"], ["1/2", "-1/2"]]
+
+
+def claim(x: str, y: str, ends: tuple[str, str] = ("[-1, 1]", "[-1, 1]"), uncertain: str = 'p = ["-1/8", "1/8"]', target: tuple[str, str] = ("0", "0"),
+          asked: Sequence[str] = ("settles",), top: str = "", rest: str = "") -> str:
+    wanted = "".join(f"[[require]]\nthat = {r}\n" if r.startswith('"') else f'[[require]]\nthat = "{r}"\n' for r in asked)
+    return (f'format = 1\n{top}\n[state]\nx = {ends[0]}\ny = {ends[1]}\n[uncertain]\n{uncertain}\n[next]\nx = "{x}"\ny = "{y}"\n'
+            f'[target]\nx = "{target[0]}"\ny = "{target[1]}"\n{rest}\n{wanted}')
+
+
+class Lines(Draft):
+    """A certificate about two states being written."""
+
+    prefix = ""
+
+    def line(self, rule: str, proves: str, uses: Sequence[int], witness: dict[str, Any], **concludes: str) -> int:
+        return super().line(rule, self.prefix + proves, uses, witness, **concludes)
+
+    def metric(self, kind: str, rows: Sequence[Sequence[str]], inverse: Sequence[Sequence[str]]) -> int:
+        return self.line("metric", "metric", [], {"kind": kind, "rows": rows, "inverse": inverse})
+
+    def matrix(self, proves: str, norm: str, uses: Sequence[int], trees: Sequence[str] = ("d",), bits: int = 0) -> int:
+        return self.line("matrix", proves, uses, {"bits": bits, "trees": list(trees)}, norm=norm)
+
+    def table(self, proves: str, values: Sequence[str], uses: Sequence[int], rows: Any = ONE, inverse: Any = ONE, trees: Sequence[str] = ("d",)) -> int:
+        """`entries`: row by row."""
+        wide = len(rows) if proves == "slopes" else 1
+        found = {f"{i // wide + 1},{i % wide + 1}": x for i, x in enumerate(values)}
+        return self.line("entries", proves, uses, {"bits": 0, "trees": list(trees), "rows": rows, "inverse": inverse}, **found)
+
+    def stretch(self, proves: str, at: dict[str, str], direction: Sequence[str], lower: str, uses: Sequence[int], bits: int = 0) -> int:
+        return self.line("stretch", proves, uses, {"at": at, "bits": bits, "direction": list(direction)}, lower=lower)
+
+    def compared(self, uses: Sequence[int], p: Sequence[str], b: Sequence[str], x: str, y: str) -> int:
+        return self.line("componentwise", "componentwise", uses, {"p": list(p), "b": list(b)}, x=x, y=y)
+
+    def found(self, kind: str | None, asked: Sequence[tuple[str, str]], metric: dict[str, Any], sensitivities: Sequence[Any] = ()) -> Entries:
+        entries = self.entries(kind, asked, sensitivities, "x")
+        results = entries["results"]
+        results["states"]["y"] = dict(results["states"]["x"])
+        if kind:
+            results["set"]["centre"]["y"] = None
+        results["metric"] = metric
+        return entries
+
+
+BOX = {"kind": "box", "weights": {"x": "1", "y": "2"}}
+POLYTOPE = {"kind": "polytope", "matrix": SLANTED}
+
+
+def hair(text: str, by: int) -> str:
+    return str(Q(text) + by * Q("1" + STEP))
+
+
+def judged(name: str, entries: Entries, place: str = "results") -> None:
+    """Nothing else is derived of any requirement, and undecided may be said of all."""
+    accept(name, entries)
+    for n, r in enumerate(entries["results"]["requirements"]):
+        for other in sorted({"proved", "refuted"} - {r["verdict"]}):
+            reject(f"{name}: {r['that']} {other}", but(entries, f"results requirements {n} verdict", other), place, f"[{n + 1}].verdict: {other} is claimed, {r['verdict']} was derived")
+
+
+def tight(name: str, entries: Entries, lines: dict[int, tuple[tuple[str, int, str], ...]]) -> None:
+    """Of these lines every conclusion is exact: a hair in the direction given is refused."""
+    for number, ends in lines.items():
+        for key, by, reason in ends:
+            old = entries["proof"][number - 1]["concludes"][key]
+            reject(f"{name}: line {number} {key}", but(entries, f"proof {number - 1} concludes {key}", hair(old, by)), f"proof line {number}", reason)
+
+
+def exact(name: str, entries: Entries, figures: dict[str, tuple[str | None, str | None]]) -> Entries:
+    """Every figure of the results as derived; wider is accepted, a hair less is not."""
+    full = entries
+    for path, (low, high) in figures.items():
+        full = but(full, f"results {path}", {"lower": low, "upper": high})
+    accept(f"{name}: exactly", full)
+    for path, ends in figures.items():
+        for end, value, by in zip(("lower", "upper"), ends, (1, -1), strict=True):
+            at = "results" + (f".{path}".replace(" ", ".") if not path.startswith("requirements") else "")
+            at = ".".join(at.split(".")[:3]) if path.startswith("set centre") else at
+            if value is None:
+                reject(f"{name}: {path} {end}", but(full, f"results {path} {end}", "1"), "results", f"{end}: nothing was derived" if path.startswith("requirements") else f"{at}.{end}: nothing was derived")
+            else:
+                accept(f"{name}: {path} {end}, wider", but(full, f"results {path} {end}", hair(value, -by)))
+                reject(f"{name}: {path} {end}", but(full, f"results {path} {end}", hair(value, by)), "results", f"{end}: more is claimed")
+    return full
+
+
+# the region is mapped into itself: [[1/2, 1/4], [1/4, 1/4]] and misses of 1/8 and 1/16, in the largest of |x|, 2|y|
+
+PAIR = ("x/2 + y/4 + p", "x/4 + y/4 + q")
+NOISE = 'p = ["-1/8", "1/8"]\nq = ["-1/16", "1/16"]'
+STATED = "[metric]\nweights = { y = 2 }"
+
+
+def region(asked: Sequence[str] = ("settles",), **other: str) -> Lines:
+    """Lines: 1 metric, 2 3 targets, 4 point, 5 ball, 6 7 images, 8 invariant, 9 10 matrices, 11 pair, 12 bound, 13 14 entries,
+    15 comparison, 16 17 stretches, 18 point."""
+    d = Lines(claim(*PAIR, uncertain=NOISE, asked=asked, rest=other.get("rest", STATED), top=other.get("top", "")))
+    return in_region(d)
+
+
+def in_region(d: Lines, kind: str = "box") -> Lines:
+    first = len(d.proof)
+
+    def of(*numbers: int) -> list[int]:
+        return [first + n for n in numbers]
+
+    d.metric(kind, WEIGHTS, UNWEIGHTED)
+    d.range("target[x]", "0", "0")
+    d.range("target[y]", "0", "0")
+    d.point("target[x]", {}, "0")
+    d.theorem("largest-ball", "ball", of(1, 2, 3, 4), radius="1", outer="1")
+    d.range("image[x]", "-7/8", "7/8")
+    d.range("image[y]", "-9/16", "9/16")
+    d.theorem("invariant-region", "invariant", of(1, 2, 3, 6, 7))
+    d.matrix("slopes", "3/4", of(8))
+    d.matrix("misses", "1/8", of(8))
+    d.theorem("slope", "slope", of(9, 10), gain="3/4", residual="1/8")
+    d.theorem("ultimate-bound", "bound[slope]", of(8, 11), bound="1/2")
+    d.table("slopes", ["1/2", "1/4", "1/4", "1/4"], of(8))
+    d.table("misses", ["1/8", "1/16"], of(8))
+    d.compared(of(8, 13, 14), ["2", "1"], ["7/20", "1/5"], "7/20", "1/5")
+    d.stretch("slopes", {"x": "1", "y": "-1", "p": "1/8", "q": "0"}, ["1", "1/2"], "3/4", of(8))
+    d.stretch("misses", {"p": "1/8", "q": "0"}, ["1"], "1/8", of(8))
+    d.point("target[y]", {}, "0")
+    return d
+
+
+IN_REGION = [
+    ("settles", "proved"), ("gain <= 0.75", "proved"), ("gain < 0.75", "refuted"), (f"gain <= 3/4 - 1{STEP}", "refuted"), (f"gain < 3/4 + 1{STEP}", "proved"),
+    ("residual <= 1/8", "proved"), ("residual < 1/8", "refuted"), (f"residual <= 1/8 - 1{STEP}", "refuted"), (f"residual < 1/8 + 1{STEP}", "proved"),
+    ("bound <= 1/2", "proved"), ("bound < 1/2", "undecided"), ("bound < 1/4", "undecided"),
+    ("bound(x) <= 7/20", "proved"), ("bound(x) < 7/20", "undecided"), (f"bound(x) < 7/20 + 1{STEP}", "proved"), ("bound(y) <= 1/5", "proved"), ("bound(y) < 1/5", "undecided"),
+    ("sharp_bound(x) <= 9", "undecided"), ("sharp_bound(y) < 9", "undecided"),
+    ("radius(x) >= 1", "proved"), ("radius(x) > 1", "undecided"), ("radius(y) >= 1", "proved"), (f"radius(y) > 1 - 1{STEP}", "proved"), ("radius(y) > 1", "undecided"),
+    ("push(x) >= 13/20", "undecided"), (f"push(x) >= 13/20 - 1{STEP}", "proved"), ("push(y) > 4/5", "undecided"), (f"push(y) >= 4/5 - 1{STEP}", "proved"),
+    # from ‖e‖ = 1 by e -> 3/4 e + 1/8: 7/8, 25/32, 91/128, 337/512
+    ("steps(x, 1, 7/8) <= 1", "proved"), ("steps(x, 1, 7/8) < 1", "undecided"), (f"steps(x, 1, 7/8 - 1{STEP}) <= 1", "undecided"), ("steps(x, 1, 337/512) <= 4", "proved"),
+    ("steps(x, 1, 1/2) <= 999", "undecided"), ("steps(x, 1, 1/2) <= 20000", "undecided"), (f"steps(x, 1 + 1{STEP}, 1) <= 9", "undecided"), ("steps(x, 1/2, 1/2) <= 0", "proved"), ("steps(x, 1/2, 499/1000) <= 99", "undecided"),
+    # y: ‖u‖ = 2, |y| <= ‖e‖/2
+    ("steps(y, 1/2, 7/16) <= 1", "proved"), (f"steps(y, 1/2, 7/16 - 1{STEP}) <= 1", "undecided"), (f"steps(y, 1/2 + 1{STEP}, 7/16) <= 1", "undecided"), ("steps(y, 1, 7/16) <= 5", "proved"), ("steps(y, 1, 7/16) < 5", "undecided"), ("steps(y, 1/4, 1/4) < 1", "proved"),
+    ("value(next(x)) <= 7/8", "proved"), ("value(next(x)) < 7/8", "refuted"), ("always(x <= 1)", "proved"), ("always(y < 1)", "refuted"), ("sensitivity(y, q) >= 1", "proved"), ("value(2) <= 2", "proved"),
+]
+REGION_FIGURES: dict[str, tuple[str | None, str | None]] = {
+    "gain": ("3/4", "3/4"), "residual": ("1/8", "1/8"), "bound": ("1/2", "1/2"), "radius": ("1", "1"), "set radius": ("1", "1"), "set centre x": ("0", "0"), "set centre y": ("0", "0"), "sharp_bound": (None, None),
+    "states x bound": (None, "7/20"), "states y bound": (None, "1/5"), "states x radius": ("1", "1"), "states y radius": ("1", "1"), "states x push": ("13/20", None), "states y push": ("4/5", None),
+    "states x sharp_bound": (None, None), "states y sharp_bound": (None, None), "routes slope gain": ("3/4", "3/4"), "routes slope residual": ("1/8", "1/8"), "routes slope bound": ("1/2", "1/2"), "requirements 0 value": (None, "2/5"),
+}
+
+
+def asked_of(d: Lines, asked: Sequence[tuple[str, str]], on: int) -> list[dict[str, str]]:
+    """Lines of the requirements about ranges; what `sensitivities` says of them."""
+    bands = []
+    for n, (that, _) in enumerate(asked, 1):
+        if that.startswith("value(next(x))"):
+            d.range(f"require[{n}]", "-7/8", "7/8", [on])
+            d.point(f"require[{n}]", {"x": "1", "y": "1", "p": "1/8"}, "7/8", uses=[on])
+        if that.startswith("always("):
+            d.range(f"require[{n}]", "-2", "0", [on])
+            d.point(f"require[{n}]", {that[7]: "1"}, "0", uses=[on])
+        if that.startswith("value(2)"):
+            d.range(f"require[{n}]", "2", "2", [on])
+        if that.startswith("sensitivity"):
+            d.range(f"require[{n}]", "1", "1", [on])
+            bands.append({"of": "y", "by": "q", "lower": "1", "upper": "1"})
+    return bands
+
+
+def touching() -> None:
+    d = region([that for that, _ in IN_REGION])
+    bands = asked_of(d, IN_REGION, 8)
+    judged("region", d.found("region", IN_REGION, BOX, bands))
+
+
+touching()
+PLAIN = region().found("region", [("settles", "proved")], BOX)
+FULL = exact("region", PLAIN, REGION_FIGURES)
+WIDER = "the range shown is wider than what is concluded"
+tight("region", PLAIN, {
+    2: (("lower", 1, WIDER), ("upper", -1, WIDER)), 4: (("lower", 1, WIDER),), 6: (("lower", 1, WIDER), ("upper", -1, WIDER)), 7: (("lower", 1, WIDER), ("upper", -1, WIDER)),
+    5: (("radius", 1, "radius: the ball is not shown to lie in the region of x"), ("outer", -1, "outer: larger balls are not shown to leave the region")),
+    9: (("norm", -1, "slopes: a leaf is not shown to stay within the norm"),), 10: (("norm", -1, "misses: a leaf is not shown to stay within the norm"),),
+    11: (("gain", -1, "gain or residual: less than what the lines used show"), ("residual", -1, "gain or residual: less")), 12: (("bound", -1, "bound: less than residual / (1 - gain)"),),
+    13: tuple((f"{i},{j}", -1, f"slopes: entry {i},{j} is less than what the leaves show") for i in (1, 2) for j in (1, 2)),
+    14: tuple((f"{i},1", -1, f"misses: entry {i},1 is less than what the leaves show") for i in (1, 2)),
+    15: (("x", -1, "x: less than what the comparison shows"), ("y", -1, "y: less than what the comparison shows")),
+    16: (("lower", 1, "slopes: the direction is not shown to be stretched by so much"),), 17: (("lower", 1, "misses: the direction is not shown"),),
+})
+
+
+def two_metrics() -> None:
+    """The ball of one norm, the invariant region of another: a bound of 1 in it would be read in the first."""
+    d = Lines(claim(*PAIR, uncertain=NOISE))
+    d.metric("box", WEIGHTS, UNWEIGHTED)
+    d.metric("box", [["1/10", "0"], ["0", "1/5"]], [["10", "0"], ["0", "5"]])
+    d.range("target[x]", "0", "0")
+    d.range("target[y]", "0", "0")
+    d.theorem("smaller-ball", "ball", [1, 3, 4], radius="1")
+    d.range("image[x]", "-7/8", "7/8")
+    d.range("image[y]", "-9/16", "9/16")
+    d.theorem("invariant-region", "invariant", [2, 3, 4, 6, 7])
+    d.matrix("slopes", "3/4", [8])
+    d.matrix("misses", "1/80", [8])
+    d.theorem("slope", "slope", [9, 10], gain="3/4", residual="1/80")
+    d.theorem("ultimate-bound", "bound[slope]", [8, 11], bound="1/20")
+    entries = d.found("region", [("settles", "proved")], BOX)
+    reject("two metrics", entries, "results", "the ball and the invariant set are of different metrics")
+    again = but(entries, "proof 1", entries["proof"][0], "proof 9 concludes norm", "1/8", "proof 10 concludes residual", "1/8", "proof 11 concludes bound", "1/2")
+    accept("one metric on two lines", again)
+
+
+two_metrics()
+
+
+def corrections() -> None:
+    """A correction told apart might show a smaller gain: then none is refuted, but for the route slope alone; the residual is."""
+    asked = ["gain < 3/4", "residual < 1/8"]
+    for top, verdict in (('correction = ["f"]\n', "undecided"), ('correction = ["f"]\nroute = "slope"\n', "refuted"), ("", "refuted")):
+        d = region(asked, rest=STATED + '\n[define]\nf = "x"\n', top=top)
+        judged(f"correction {top!r}", d.found("region", [(asked[0], verdict), (asked[1], "refuted")], BOX))
+
+
+corrections()
+# fmt: on
+
+
+@pytest.mark.parametrize("name", CASES)
+def test_several_boundary(name: str) -> None:
+    CASES[name](ultibound.checker)
