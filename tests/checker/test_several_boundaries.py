@@ -266,6 +266,132 @@ def corrections() -> None:
 
 
 corrections()
+
+
+@unit
+def combinations_of_cells(checker: Any) -> None:
+    """Each entry has few cells, all of them together too many: told before they are listed."""
+    text = claim("u/2", "w/2", rest='[library]\nfile = "t.csv"\nat = { p_ = "x" }\n[[library]]\nfile = "s.csv"\nat = { q_ = "y" }\n'.replace("[library]\nf", "[[library]]\nf", 1))
+    tables = {"t.csv": "p_,u\n-1,0\n0,1\n1,2\n", "s.csv": "q_,w\n-1,0\n0,1\n0.5,1\n1,2\n"}
+    d = derivation(checker, text, tables)
+    one = tuple(tuple(Q(x) for x in row) for row in ONE)
+    domain = checker.derive.Domain(False, Q(0), (Q(0), Q(0)), targets=((Q(0), Q(0)),) * 2, metric=checker.matrices.Metric("box", one, one))
+    module = checker.jacobians
+    with limited(module, MOST_CELLS=6):
+        assert [len(v.cells) for v in module.Table(d, "slopes", domain, 0, None).variables] == [2, 3]
+    with limited(module, MOST_CELLS=5), refuses(checker.calculus.Unprovable, "more than 5 combinations of library cells and listed values"):
+        module.Table(d, "slopes", domain, 0, None)
+
+
+# a ball: [[1/2, 3/8], [1/2, 0]] and a miss of 1/8 of x, in 2|x| + |y|, on [-1, 1] x [-2, 2]; (1, 2) leads to 5/4
+
+BALL = ("x/2 + 3*y/8 + p", "x/2")
+ENDS = ("[-1, 1]", "[-2, 2]")
+
+
+def ball(asked: Sequence[str] = ("settles",), rule: str = "largest-ball", invariant: str = "invariant-ball", radius: str = "2", bound: str = "1",
+         b: tuple[str, str] = ("2/5", "1/5"), entries: bool = True, escapes: bool = True, **other: str) -> Lines:
+    """Lines: 1 metric, 2 3 targets, 4 5 points, 6 ball, 7 escape, 8 9 matrices, 10 pair, 11 12 entries in the slanted basis,
+    13 invariant, 14 bound, 15 16 entries, 17 comparison, 18 19 stretches."""
+    d = Lines(claim(*BALL, ends=ENDS, asked=asked, **other))
+    d.metric("polytope", SLANTED, UPRIGHT)
+    d.range("target[x]", "0", "0")
+    d.range("target[y]", "0", "0")
+    d.point("target[x]", {}, "0")
+    d.point("target[y]", {}, "0")
+    if rule == "largest-ball":
+        d.theorem("largest-ball", "ball", [1, 2, 3, 4, 5], radius=radius, outer="2")
+    else:
+        d.theorem("smaller-ball", "ball", [1, 2, 3], radius=radius)
+    d.point("image[x]", {"x": "1", "y": "2", "p": "0"}, "5/4")
+    d.matrix("slopes", "3/4", [6])
+    d.matrix("misses", "1/4", [6])
+    d.theorem("slope", "slope", [8, 9], gain="3/4", residual="1/4")
+    d.table("slopes", ["3/4", "0", "1/2", "1/4"], [6], SLANTED, UPRIGHT)
+    d.table("misses", ["1/4", "1/4"], [6], SLANTED, UPRIGHT)
+    d.theorem(invariant, "invariant", [6, 10] if invariant == "invariant-ball" else [6, 11, 12])
+    d.theorem("ultimate-bound", "bound[slope]", [13, 10], bound=bound)
+    d.table("slopes", ["1/2", "3/8", "1/2", "0"], [13])
+    d.table("misses", ["1/8", "0"], [13])
+    d.compared([13, 15, 16], ["1", "1"], b, *b)
+    d.stretch("slopes", {"x": "1/2", "y": "1", "p": "0"}, ["1", "0"], "3/4", [6])
+    d.stretch("misses", {"p": "-1/8"}, ["-2"], "1/4", [6])
+    return d
+
+
+def without(entries: Entries, *numbers: int) -> Entries:
+    """Without these lines, and with the others' numbers moved up."""
+    kept = [n for n in range(1, len(entries["proof"]) + 1) if n not in numbers]
+    found = but(entries, "proof", [entries["proof"][n - 1] for n in kept])
+    for line in found["proof"]:
+        line["uses"] = [kept.index(n) + 1 for n in line["uses"] if n in kept]
+    if "slope" not in [line["rule"] for line in found["proof"]]:
+        found["results"]["routes"] = {}
+    return found
+
+
+ON_BALL = [
+    ("settles", "proved"), ("gain <= 3/4", "proved"), ("gain < 3/4", "undecided"), ("gain < 1/2", "undecided"), ("residual <= 1/4", "proved"), ("residual < 1/4", "undecided"), ("residual < 1/8", "undecided"),
+    ("bound <= 1", "proved"), ("bound < 1", "undecided"), ("bound(x) <= 2/5", "proved"), ("bound(x) < 2/5", "undecided"), ("bound(y) <= 1/5", "proved"), ("bound(y) < 1/5", "undecided"), ("sharp_bound(x) < 9", "undecided"),
+    ("radius(x) >= 1", "proved"), ("radius(x) > 1", "undecided"), ("radius(y) >= 2", "proved"), ("radius(y) > 2", "undecided"), (f"radius(y) >= 2 + 1{STEP}", "undecided"),
+    ("push(x) >= 1/2", "undecided"), (f"push(x) >= 1/2 - 1{STEP}", "proved"), ("push(y) >= 1", "undecided"), (f"push(y) >= 1 - 1{STEP}", "proved"),
+    # e -> 3/4 e + 1/4 from 2: 7/4, 25/16; |x| <= ‖e‖/2
+    ("steps(x, 1, 7/8) <= 1", "proved"), (f"steps(x, 1, 7/8 - 1{STEP}) <= 1", "undecided"), (f"steps(x, 1 + 1{STEP}, 1) <= 1", "undecided"), ("steps(y, 2, 25/16) <= 2", "proved"), (f"steps(y, 2, 25/16 - 1{STEP}) <= 2", "undecided"), ("steps(x, 1/2, 1/2) < 1", "proved"),
+]
+BALL_FIGURES: dict[str, tuple[str | None, str | None]] = {
+    "gain": ("3/4", "3/4"), "residual": ("1/4", "1/4"), "bound": ("1", "1"), "radius": ("2", "2"), "set radius": ("2", "2"), "set centre x": ("0", "0"), "set centre y": ("0", "0"),
+    "states x bound": (None, "2/5"), "states y bound": (None, "1/5"), "states x radius": ("1", "1"), "states y radius": ("2", "2"), "states x push": ("1/2", None), "states y push": ("1", None), "requirements 0 value": (None, "1"),
+    "routes slope gain": ("3/4", "3/4"), "routes slope residual": ("1/4", "1/4"), "routes slope bound": ("1", "1"),
+}
+
+
+def on_ball() -> None:
+    entries = without(ball([that for that, _ in ON_BALL]).found("ball", ON_BALL, POLYTOPE), 5, 11, 12)
+    judged("ball", entries)
+    plain = without(ball().found("ball", [("settles", "proved")], POLYTOPE), 11, 12)
+    exact("ball", without(plain, 5), BALL_FIGURES)
+    rows = ball(invariant="invariant-rows").found("ball", [("settles", "proved")], POLYTOPE)
+    accept("ball by rows", rows)
+    tight("ball by rows", rows, {
+        6: (("radius", 1, "radius: the ball is not shown to lie in the region of x"), ("outer", -1, "outer: larger balls are not shown to leave the region")),
+        7: (("lower", 1, WIDER),), 8: (("norm", -1, "slopes: a leaf is not shown to stay within the norm"),), 9: (("norm", -1, "misses: a leaf"),), 10: (("gain", -1, "gain or residual"), ("residual", -1, "gain or residual")),
+        11: tuple((f"{i},{j}", -1, f"slopes: entry {i},{j} is less") for i in (1, 2) for j in (1, 2)), 12: tuple((f"{i},1", -1, f"misses: entry {i},1 is less") for i in (1, 2)),
+        14: (("bound", -1, "bound: less than"),), 18: (("lower", 1, "slopes: the direction"),), 19: (("lower", 1, "misses: the direction"),),
+    })
+    # invariant exactly: 3/4 2 + 1/2, or 1/2 2 + 1/4 2 + 1/2
+    for value, good in (("1/2", True), (hair("1/2", 1), False)):
+        changed = but(plain, "proof 9 concludes residual", value, "proof 11 concludes bound", str(4 * Q(value)))
+        changed = but(changed, "proof 14 concludes x", "2/5") if good else changed
+        in_norm = "gain times radius plus residual exceeds the radius"
+        if good:
+            accept("ball, invariant at equality", changed)
+        else:
+            reject("ball, not invariant by a hair", changed, "proof line 11", in_norm)
+        for i in (1, 2):
+            changed = but(rows, f"proof 11 concludes {i},1", value)
+            if good:
+                accept(f"rows, invariant at equality, {i}", changed)
+            else:
+                reject(f"rows, not invariant by a hair, {i}", changed, "proof line 13", "a row exceeds the radius")
+    # a bound as large as the radius settles nothing; in the norm, or by states
+    for value, good in (("2", False), (hair("2", -1), True)):
+        bounded = without(plain, 13, 14, 15)
+        changed = but(bounded, "proof 11 concludes bound", value, "results requirements 0 verdict", "proved")
+        if good:
+            accept("ball, settled by a hair", changed)
+        else:
+            reject("ball, not settled", changed, "results", "[1].verdict: proved is claimed, undecided was derived")
+            accept("ball, undecided", but(changed, "results requirements 0 verdict", "undecided"))
+    for x, good in (("4/5", False), (hair("4/5", -1), True)):
+        by_states = without(rows, 8, 9, 10, 14, 18, 19)
+        changed = but(by_states, "proof 12 witness b", [x, "2/5"], "proof 12 concludes x", x, "proof 12 concludes y", "2/5")
+        if good:
+            accept("ball by rows, settled by a hair", changed)
+        else:
+            reject("ball by rows, not settled", changed, "results", "[1].verdict: proved is claimed, undecided was derived")
+            accept("ball by rows, undecided", but(changed, "results requirements 0 verdict", "undecided"))
+
+on_ball()
 # fmt: on
 
 
