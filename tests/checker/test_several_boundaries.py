@@ -392,6 +392,152 @@ def on_ball() -> None:
             accept("ball by rows, undecided", but(changed, "results requirements 0 verdict", "undecided"))
 
 on_ball()
+
+
+# a ball about a moving target: c + 1/8 and 2c (or turned round), c in [-1/4, 1/4] moving by 1/64; the same Jacobian, a miss of 1/32
+
+def led(turned: bool = False, asked: Sequence[str] = ("settles",), **other: str) -> Lines:
+    """Lines: 1 metric, 2 3 targets, 4 point, 5 ball, 6 escape, 7 8 matrices, 9 10 target slopes, 11 pair, 12 13 slanted entries,
+    14 invariant, 15 bound, 16 17 entries, 18 comparison, 19 comparison in the slanted basis, 20 21 stretches."""
+    way = "-" if turned else ""
+    at = ("-(c + 1/8)", "-2*c") if turned else ("c + 1/8", "2*c")
+    step = (f"target(x) + (x - target(x))/2 + 3*(y - target(y))/8 + {way}p", "target(y) + (x - target(x))/2")
+    d = Lines(claim(*step, ends=ENDS, uncertain='p = ["-1/32", "1/32"]\nc = { range = ["-1/4", "1/4"], held = true, change = "1/64" }', target=at, asked=asked, **other))
+
+    def of(low: str, high: str) -> tuple[str, str]:
+        return (str(-Q(high)), str(-Q(low))) if turned else (low, high)
+
+    d.metric("polytope", SLANTED, UPRIGHT)
+    d.range("target[x]", *of("-1/8", "3/8"))
+    d.range("target[y]", "-1/2", "1/2")
+    d.point("target[x]", {"c": "1/4"}, of("3/8", "3/8")[0])
+    d.theorem("largest-ball", "ball", [1, 2, 3, 4], radius="5/4", outer="5/4")
+    d.point("image[x]", {"x": way + "1", "y": way + "2", "c": "1/4", "p": "0"}, way + "5/4")
+    d.matrix("slopes", "3/4", [5], ["c"])
+    d.matrix("misses", "1/16", [5], ["c"])
+    d.range("target-slope[x,c]", *of("1", "1"))
+    d.range("target-slope[y,c]", *of("2", "2"))
+    d.theorem("slope", "slope", [7, 8, 9, 10], gain="3/4", residual="1/8")
+    d.table("slopes", ["3/4", "0", "1/2", "1/4"], [5], SLANTED, UPRIGHT, ["c"])
+    d.table("misses", ["1/16", "1/16"], [5], SLANTED, UPRIGHT, ["c"])
+    d.theorem("invariant-rows", "invariant", [5, 12, 13, 9, 10])
+    d.theorem("ultimate-bound", "bound[slope]", [14, 11], bound="1/2")
+    d.table("slopes", ["1/2", "3/8", "1/2", "0"], [5], trees=["c"])
+    d.table("misses", ["1/32", "0"], [5], trees=["c"])
+    d.compared([14, 16, 17, 9, 10], ["1", "1"], ["3/16", "1/8"], "3/16", "1/8")
+    d.stretch("slopes", {"error(x)": "5/8", "error(y)": "0", "c": "0", "p": "0"}, ["1", "0"], "3/4", [5])
+    d.stretch("misses", {"p": "1/32", "c": "1/4"}, ["1"], "1/16", [5])
+    return d
+
+
+def on_moving_ball() -> None:
+    for turned in (False, True):
+        name = f"led{' the other way' if turned else ''}"
+        entries = led(turned).found("ball", [("settles", "proved")], POLYTOPE)
+        centre = ("-3/8", "1/8") if turned else ("-1/8", "3/8")
+        accept(name, entries)
+        tight(name, entries, {
+            2: (("lower", 1, WIDER), ("upper", -1, WIDER)), 3: (("lower", 1, WIDER), ("upper", -1, WIDER)), 5: (("radius", 1, "radius: the ball is not shown to lie in the region of x"), ("outer", -1, "outer: larger balls are not shown")),
+            7: (("norm", -1, "slopes: a leaf"),), 8: (("norm", -1, "misses: a leaf"),), 9: (("lower", 1, WIDER),), 10: (("upper", -1, WIDER),), 11: (("gain", -1, "gain or residual"), ("residual", -1, "gain or residual")),
+            18: (("x", -1, "x: less than what the comparison shows"), ("y", -1, "y: less than what the comparison shows")), 19: (("lower", 1, "slopes: the direction"),), 20: (("lower", 1, "misses: the direction"),),
+        })
+        exact(name, entries, {
+            "gain": ("3/4", "3/4"), "residual": ("1/16", "1/8"), "bound": ("1/4", "1/2"), "radius": ("5/4", "5/4"), "set centre x": centre, "set centre y": ("-1/2", "1/2"), "states x bound": (None, "3/16"), "states y bound": (None, "1/8"),
+            "states x radius": ("5/8", "5/8"), "states y radius": ("5/4", "5/4"), "states x push": ("3/8", None), "states y push": ("3/4", None),
+        })
+        for b in (["3/16", hair("1/8", -1)], [hair("3/16", -1), "1/8"]):
+            reject(f"{name}: b {b[0][:5]} {b[1][:5]}", but(entries, "proof 17 witness b", b), "proof line 18", "p, b: K p < p, K b + residual <= b and p > 0 are not all met")
+        for x, y, good in (("5/16", "5/8", True), ("5/16", hair("5/8", 1), False), (hair("5/16", 1), "5/8", False), ("-5/16", "-5/8", True), ("-5/16", hair("-5/8", -1), False), ("5/8", "0", True), ("-5/16", "5/8", True)):
+            changed = but(entries, "proof 18 witness at error(x)", x, "proof 18 witness at error(y)", y)
+            if good:
+                accept(f"{name}: a point at {x}, {y}", changed)
+            else:
+                reject(f"{name}: a point at {x[:6]}, {y[:6]}", changed, "proof line 19", "at: not shown to be in the set")
+        reject(f"{name}: a point beyond the ball's width", but(entries, "proof 18 witness at error(x)", hair("5/8", 1)), "proof line 19", "at.error(x): outside the range")
+        # without the movement the rows and the residual would be less
+        reject(f"{name}: movement forgotten", but(entries, "proof 10 concludes residual", "1/16"), "proof line 11", "gain or residual")
+        # 3/4 5/4 + e + 1/16 = 5/4 and 1/2 5/4 + 1/4 5/4 + e + 1/16 = 5/4 at e = 1/4
+        for i in (1, 2):
+            accept(f"{name}: rows at equality {i}", but(entries, f"proof 12 concludes {i},1", "1/4"))
+            reject(f"{name}: rows beyond {i}", but(entries, f"proof 12 concludes {i},1", hair("1/4", 1)), "proof line 14", "a row exceeds the radius")
+        # in the slanted basis: b = (1/2, 1/2), |x| <= 1/4, |y| <= 1/2
+        slanted = but(entries, "proof 17 uses", [14, 12, 13, 9, 10], "proof 17 witness b", ["1/2", "1/2"], "proof 17 concludes", {"x": "1/4", "y": "1/2"})
+        slanted = without(slanted, 15, 16, 17)
+        accept(f"{name}: slanted comparison", slanted)
+        tight(f"{name}: slanted comparison", slanted, {15: (("x", -1, "x: less than what the comparison shows"), ("y", -1, "y: less than what the comparison shows"))})
+        for b in (["1/2", hair("1/2", -1)], [hair("1/2", -1), "1/2"]):
+            reject(f"{name}: slanted b {b[0][:5]} {b[1][:5]}", but(slanted, "proof 14 witness b", b), "proof line 15", "p, b: K p < p")
+
+
+on_moving_ball()
+
+
+# what lines may use, prove, hold
+
+def malformed() -> None:
+    region_, rows, moving = PLAIN, ball(invariant="invariant-rows").found("ball", [("settles", "proved")], POLYTOPE), led().found("ball", [("settles", "proved")], POLYTOPE)
+    uses: Any
+    value: Any
+    for uses, reason in (([], "uses: the one line that gives the set"), ([8, 8], "uses: the one line"), ([1], "uses: the one line"), ([2], "uses: the one line"), ([8, 1], "uses: the one line")):
+        for n in (9, 10, 13, 14, 16, 17):
+            reject(f"line {n} uses {uses}", but(region_, f"proof {n - 1} uses", uses), f"proof line {n}", reason)
+    for uses in ([1], [2]):
+        reject(f"metric uses {uses}", but(region_, "proof 17", {**region_["proof"][0], "uses": uses}), "proof line 18", "a metric rests on no other line")
+    reject("metric of another name", but(region_, "proof 0 proves", "norm"), "proof line 1", "a metric rests on no other line")
+    for n, of in ((5, "ball"), (8, "invariant"), (11, "slope"), (12, "bound[slope]"), (15, "componentwise")):
+        reject(f"line {n} proves another", but(region_, f"proof {n - 1} proves", "more"), f"proof line {n}", "invariant set, then entries" if n == 15 else f"{of} rests on" if n != 12 else "another route than more")
+    for n in (9, 13, 16):
+        reject(f"line {n} proves another", but(region_, f"proof {n - 1} proves", "slope[x,x]"), f"proof line {n}", "a matrix proves slopes or misses")
+    for n, several in ((5, ([1, 2, 4, 3], [1, 3, 2, 4], [2, 3, 4], [1, 2, 3], [1, 2, 3, 1], [1, 2, 3, 4, 2], [])), (8, ([1, 2, 3, 7, 6], [1, 3, 2, 6, 7], [1, 2, 3, 6], [2, 3, 6, 7], [1, 2, 3, 6, 7, 7], [], [1, 6, 7, 2, 3])),
+                       (11, ([9], [10, 9], [9, 9], [9, 10, 10], [])), (15, ([8, 13], [13, 14], [8, 14, 13], [5, 13, 14], [8, 13, 14, 2], [], [8, 9, 14])), (12, ([8], [8, 9], [11, 8], [5, 11]))):
+        for uses in several:
+            wanted = {5: "outer: " if uses in ([1, 2, 3, 1], [1, 2, 3, 4, 2], [1, 2, 3]) else "ball rests on metric metric, range target[x], range target[y]", 8: "invariant rests on metric metric, range target[x], range target[y], range image[x], range image[y]",
+                      11: "slope rests on matrix slopes, matrix misses", 15: "componentwise rests on entries slopes, entries misses" if uses[:1] == [8] else "componentwise rests on the invariant set, then entries", 12: "uses: the invariant set, then gain and residual of a route"}[n]
+            reject(f"line {n} uses {uses}", but(region_, f"proof {n - 1} uses", uses), f"proof line {n}", wanted)
+    for uses, reason in (([11, 12], "invariant rests on the ball, then entries"), ([6, 12, 11], "invariant rests on entries slopes, entries misses"), ([6, 11], "invariant rests on entries"), ([6], "invariant rests on entries"), ([], "invariant rests on the ball"), ([6, 11, 12, 2], "invariant rests on entries"), ([6, 8, 9], "invariant rests on entries")):
+        reject(f"rows use {uses}", but(rows, "proof 12 uses", uses), "proof line 13", reason)
+    reject("rows prove another", but(rows, "proof 12 proves", "ball"), "proof line 13", "invariant rests on the ball, then entries")
+    for n, uses, reason in ((11, [7, 8, 10, 9], "slope rests on"), (11, [7, 8, 9], "slope rests on"), (11, [7, 8], "slope rests on"), (14, [5, 12, 13], "invariant rests on entries"), (14, [5, 12, 13, 10, 9], "invariant rests on entries"), (18, [14, 16, 17], "componentwise rests on entries"), (18, [14, 16, 17, 10, 9], "componentwise rests on entries")):
+        reject(f"led: line {n} uses {uses}", but(moving, f"proof {n - 1} uses", uses), f"proof line {n}", reason)
+    # bases that differ, and the ball's own
+    reject("slopes and misses in different bases", but(moving, "proof 17 uses", [14, 16, 13, 9, 10]), "proof line 18", "entries in different bases")
+    reject("misses and slopes in different bases", but(moving, "proof 17 uses", [14, 12, 17, 9, 10]), "proof line 18", "entries in different bases")
+    for n in (11, 12):
+        reject(f"rows in another basis, {n}", but(rows, f"proof {n - 1} witness rows", ONE, f"proof {n - 1} witness inverse", ONE, f"proof {n - 1} concludes", {"1,1": "1/2", "1,2": "1", "2,1": "1", "2,2": "1"} if n == 11 else {"1,1": "1", "2,1": "1"}), "proof line 13", "entries of another set, or in another basis")
+    # shapes of witnesses
+    for path, value, n, reason in (
+        ("8 witness trees", "d", 9, "trees: a list of texts"), ("8 witness trees", [1], 9, "trees: a list of texts"), ("8 witness trees", None, 9, "trees: a list of texts"), ("8 witness trees", [], 9, "0 trees for 1 cells"), ("8 witness trees", ["d", "d"], 9, "2 trees for 1 cells"),
+        ("8 witness trees", ["m"], 9, "unknown form 'm'"), ("8 witness trees", ["s"], 9, "unknown form 's'"), ("8 witness trees", [""], 9, "unknown form ''"), ("8 witness trees", ["0 d"], 9, "a tree ends before all of its box is covered"), ("8 witness trees", ["d d"], 9, "a tree goes on after its last leaf"),
+        ("8 witness trees", ["0 d x"], 9, "unknown form 'x'"), ("8 witness trees", ["4 d d"], 9, "unknown form '4'"), ("8 witness bits", 1, 9, "bits: 0 for exact rationals"), ("12 witness bits", True, 13, "bits: 0 for exact"), ("15 witness bits", None, 16, "bits: 0 for exact"),
+        ("12 witness trees", ["0 d"], 13, "a tree ends before"), ("12 witness rows", "1", 13, "rows: a list of rows"), ("12 witness rows", ["1", "0"], 13, "rows: a list of rows"), ("12 witness rows", [["1", "0"]], 13, "the inverse has one row for each state"), ("12 witness inverse", None, 13, "inverse: a list of rows"),
+        ("12 witness inverse", [["1", "0"], ["1", "1"]], 13, "the inverse times the matrix is not 1"), ("12 witness rows", [[1, "0"], ["0", "1"]], 13, "rows: a proved number is written as text"), ("0 witness kind", "ball", 1, "the kind is one of box, polytope, ellipsoid"), ("0 witness kind", ["box"], 1, "the kind is one of"),
+        ("0 witness kind", "polytope", 1, "rows: the weight of x is not the one the claim states, exactly"), ("0 witness rows", [["1", "1"], ["0", "2"]], 1, "a box has positive weights"), ("0 witness inverse", ONE, 1, "the inverse times the matrix is not 1"),
+        ("12 concludes 1,2", GONE, 13, "slopes: entry 1,2 is less than what the leaves show"), ("12 concludes 3,1", "1", 13, "slopes: one conclusion an entry"), ("13 concludes 1,2", "1", 14, "misses: one conclusion an entry"), ("13 concludes 2,1", GONE, 14, "misses: entry 2,1 is less"), ("14 concludes z", "1", 15, "concludes: a bound for each state"),
+        ("14 concludes y", GONE, 15, "concludes: a bound for each state"), ("14 witness p", ["2"], 15, "p: a list of 2 numbers"), ("14 witness p", ["2", "1", "1"], 15, "p: a list of 2 numbers"), ("14 witness b", "11", 15, "b: a list of 2 numbers"), ("14 witness b", [1, 1], 15, "b: a proved number is written as text"),
+        ("14 witness p", ["1", "2"], 15, "p, b: K p < p"), ("14 witness p", ["1", "1/3"], 15, "p, b: K p < p"), ("14 witness p", ["0", "0"], 15, "p, b: K p < p"), ("14 witness p", ["-1", "-1"], 15, "p, b"), ("14 witness b", ["7/20", hair("1/5", -1)], 15, "p, b"), ("14 witness b", [hair("7/20", -1), "1/5"], 15, "p, b"),
+        ("15 witness direction", ["1"], 16, "direction: a list of 2 numbers"), ("15 witness direction", ["1", "1", "1"], 16, "direction: a list of 2"), ("15 witness direction", "11", 16, "direction: a list of 2"), ("15 witness direction", ["0", "0"], 16, "slopes: the direction is not shown to be stretched by so much"),
+        ("16 witness direction", ["1", "1"], 17, "direction: a list of 1 numbers"), ("16 witness direction", ["0"], 17, "misses: the direction is not shown"), ("15 witness at", {}, 16, "at: one value for each variable"), ("15 witness at x", hair("1", 1), 16, "at.x: outside the range"), ("16 witness at p", hair("1/8", 1), 17, "at.p: outside the range"),
+        ("16 witness at", [], 17, "at: one value for each variable"), ("16 witness at x", "0", 17, "at: one value for each variable"),
+    ):
+        reject(f"{path} {value}", but(region_, f"proof {path}", value), f"proof line {n}", reason)
+    accept("p at its least", but(region_, "proof 14 witness p", ["1", "1"]))
+    for direction, lower in ((["-1", "-1/2"], "3/4"), (["-2", "-1"], "3/4"), (["1", "-1/2"], "3/8"), (["0", "1"], "1/4"), (["1", "0"], "1/2")):
+        changed = but(region_, "proof 15 witness direction", direction, "proof 15 concludes lower", lower)
+        accept(f"direction {direction}", changed)
+        reject(f"direction {direction}, more", but(changed, "proof 15 concludes lower", hair(lower, 1)), "proof line 16", "slopes: the direction")
+    for direction in (["-1"], ["7"], ["-1/3"]):
+        accept(f"direction {direction} of a miss", but(region_, "proof 16 witness direction", direction))
+    accept("nothing stretched", but(region_, "proof 15 concludes lower", "-1", "proof 16 concludes lower", "0"))
+    zero = but(region_, "proof 15 concludes lower", "-1", "results gain", {"lower": "0", "upper": None})
+    accept("a lower end of nothing", zero)
+    reject("a lower end below nothing", but(zero, "results gain lower", hair("0", 1)), "results", "results.gain.lower: more is claimed")
+    reject("a direction of nothing", but(region_, "proof 15 witness direction", ["0", "0"], "proof 15 concludes lower", "-1"), "proof line 16", "slopes: the direction")
+    # a tree of two leaves
+    accept("two leaves", but(region_, "proof 8 witness trees", ["0 d c"], "proof 12 witness trees", ["2 1 c d d"]), leaves=11)
+    for n in (1, 2, 3):
+        reject(f"line {n} is idle", but(region_, "proof 17", region_["proof"][n - 1]), "proof", "serves no later line")
+
+malformed()
 # fmt: on
 
 
