@@ -6,8 +6,7 @@ one, so that every number is known and a hair less of it is refused.
 
 from __future__ import annotations
 
-import itertools
-from collections.abc import Callable, Sequence
+from collections.abc import Sequence
 from fractions import Fraction as Q
 from typing import Any
 
@@ -538,6 +537,235 @@ def malformed() -> None:
         reject(f"line {n} is idle", but(region_, "proof 17", region_["proof"][n - 1]), "proof", "serves no later line")
 
 malformed()
+
+
+# halves of the way to the target: a region of any ends, targets anywhere, any norm
+
+ROOT_HALF = "0.7071067811865475244"  # of 2, from below
+
+
+def little(kind: str, rows: Any, inverse: Any, radius: str, outer: str, ends: tuple[tuple[str, str], tuple[str, str]] = (("-1", "1"), ("-1", "1")), at: tuple[str, str] = ("0", "0"),
+           first: Sequence[int] = (0,), rest: str = "") -> Entries:
+    """Lines: 1 metric, 2 3 targets, 4 5 points of them, 6 ball (from the points of these ranks), 7 8 images, 9 invariant."""
+    d = Lines(claim(f"(x + ({at[0]}))/2", f"(y + ({at[1]}))/2", ends=tuple(f'["{a}", "{b}"]' for a, b in ends), target=at, rest=rest))  # type: ignore[arg-type]
+    d.metric(kind, rows, inverse)
+    d.range("target[x]", at[0], at[0])
+    d.range("target[y]", at[1], at[1])
+    d.point("target[x]", {}, at[0])
+    d.point("target[y]", {}, at[1])
+    d.theorem("largest-ball", "ball", [1, 2, 3, *(4 + n for n in first)], radius=radius, outer=outer)
+    for s, (low, high), target in zip("xy", ends, at, strict=True):
+        d.range(f"image[{s}]", str((Q(low) + Q(target)) / 2), str((Q(high) + Q(target)) / 2))
+    d.theorem("invariant-region", "invariant", [1, 2, 3, 7, 8])
+    entries = d.found("region", [("settles", "undecided")], {})
+    entries["results"]["metric"] = shown(kind, rows)
+    return entries
+
+
+def shown(kind: str, rows: Any) -> dict[str, Any]:
+    if kind == "box":
+        return {"kind": "box", "weights": {"x": rows[0][0], "y": rows[1][1]}}
+    if kind == "polytope":
+        return {"kind": kind, "matrix": rows}
+    return {"kind": kind, "matrix": [[str(sum(Q(row[i]) * Q(row[j]) for row in rows)) for j in (0, 1)] for i in (0, 1)]}
+
+
+THIRDS, OF_THIRDS = [["3", "0"], ["4", "5"]], [["1/3", "0"], ["-4/15", "1/5"]]  # reaches to 1/3 along both states
+SHEAR, OF_SHEAR = [["1", "1"], ["0", "1"]], [["1", "-1"], ["0", "1"]]  # to the root of 2, and to 1
+
+
+def balls() -> None:
+    inside_, outside = "radius: the ball is not shown to lie in the region of ", "outer: larger balls are not shown to leave the region"
+
+    def both(name: str, *of: Any, s: str, **other: Any) -> None:
+        kind, rows, inverse, radius, outer = of
+        accept(f"ball {name}", little(kind, rows, inverse, radius, outer, **other))
+        accept(f"ball {name}, looser", little(kind, rows, inverse, hair(radius, -1) if Q(radius) > 0 else radius, hair(outer, 1), **other))
+        reject(f"ball {name}, larger", little(kind, rows, inverse, hair(radius, 1), outer, **other), "proof line 6", inside_ + s)
+        reject(f"ball {name}, outer less", little(kind, rows, inverse, radius, hair(outer, -1), **other), "proof line 6", outside)
+
+    # each of the four edges in turn is the nearest
+    near = ((("-1", "3"), ("-2", "3"), "x"), (("-3", "1"), ("-2", "3"), "x"), (("-2", "3"), ("-1", "3"), "y"), (("-2", "3"), ("-3", "1"), "y"))
+    for x, y, s in near:
+        rank = "xy".index(s)
+        both(f"in a box, {x} {y}", "box", ONE, ONE, "1", "1", s=s, ends=(x, y), first=(rank,))
+        both(f"in thirds, {x} {y}", "ellipsoid", THIRDS, OF_THIRDS, "3", "3", s=s, ends=(x, y), first=(rank,))
+        both(f"slanted, {x} {y}", "polytope", SLANTED, UPRIGHT, "2" if s == "x" else "1", "2" if s == "x" else "1", s=s, ends=(x, y), first=(rank,))
+        both(f"in a box, both points, {x} {y}", "box", ONE, ONE, "1", "1", s=s, ends=(x, y), first=(0, 1))
+        reject(f"outer by the point of the other state, {x} {y}", little("box", ONE, ONE, "1", "1", ends=(x, y), first=(1 - rank,)), "proof line 6", outside)
+        exact(f"edges, {x} {y}", little("box", ONE, ONE, "1", "1", ends=(x, y), first=(rank,)), {f"states {s} radius": ("1", "1"), f"states {'xy'[1 - rank]} radius": ("2", "2"), "radius": ("1", "1"), "states y bound": (None, None)})
+    for at, s in ((("1/2", "0"), "x"), (("-1/2", "0"), "x"), (("0", "-1/2"), "y"), (("0", "1/2"), "y")):
+        rank = "xy".index(s)
+        both(f"about {at}", "box", ONE, ONE, "1/2", "1/2", s=s, at=at, first=(rank,))
+        exact(f"edges about {at}", little("box", ONE, ONE, "1/2", "1/2", at=at, first=(rank,)), {f"states {s} radius": ("1/2", "1/2"), f"states {'xy'[1 - rank]} radius": ("1", "1"), "set centre x": (at[0], at[0]), "set centre y": (at[1], at[1])})
+    # a root: as far as its rounded value, and no further
+    last = "0.0000000000000000001"
+    for first in ((0,), (0, 1)):
+        root = little("ellipsoid", SHEAR, OF_SHEAR, ROOT_HALF, str(Q(ROOT_HALF) + Q(last)), first=first)
+        accept(f"ball of a root {first}", root)
+        reject(f"ball of a root, larger {first}", but(root, "proof 5 concludes radius", str(Q(ROOT_HALF) + Q(last))), "proof line 6", inside_ + "x")
+        reject(f"ball of a root, outer less {first}", but(root, "proof 5 concludes outer", ROOT_HALF), "proof line 6", outside)
+    # nothing is the largest ball about a target on the edge, and none is below nothing
+    edge = little("ellipsoid", THIRDS, OF_THIRDS, "0", "0", at=("1", "0"))
+    accept("ball of nothing", edge)
+    reject("ball below nothing", but(edge, "proof 5 concludes radius", hair("0", -1)), "proof line 6", "radius: below nothing")
+    reject("ball of an outer radius below nothing", but(little("ellipsoid", THIRDS, OF_THIRDS, "3", "3"), "proof 5 concludes outer", "-3"), "proof line 6", outside)
+    # three rows: no outer radius is shown, a smaller ball is
+    rows, inverse = [*ONE, ["1", "1"]], [["1", "0", "0"], ["0", "1", "0"]]
+    three = little("polytope", rows, inverse, "1", "1")
+    reject("three rows, largest", three, "proof line 6", "outer: points of the targets, and a square matrix")
+    smaller = but(three, "proof 5", {**three["proof"][5], "rule": "smaller-ball", "uses": [1, 2, 3], "concludes": {"radius": "1"}})
+    accept("three rows, smaller", smaller)
+    reject("three rows, smaller, by a hair", but(smaller, "proof 5 concludes radius", hair("1", 1)), "proof line 6", inside_ + "x")
+    for uses in ([1, 2, 3, 4], [1, 2, 3, 4, 5]):
+        reject(f"smaller ball uses {uses}", but(smaller, "proof 5 uses", uses), "proof line 6", "a smaller ball rests on the metric and the targets")
+    one = little("box", ONE, ONE, "1", "1")
+    for uses, reason in (([1, 2, 3, 2], "outer: points of the targets, and a square matrix"), ([1, 2, 3], outside), ([1, 2, 3, 4, 3], "outer: points"), ([1, 3, 2, 4], "ball rests on metric")):
+        reject(f"largest ball uses {uses}", but(one, "proof 5 uses", uses), "proof line 6", reason)
+    # images and targets up to the edges
+    for n, s in ((7, "x"), (8, "y"), (2, "x"), (3, "y")):
+        for key, value, by in (("lower", "-1", -1), ("upper", "1", 1)):
+            changed = but(one, f"proof {n - 1} concludes {key}", value)
+            if n < 4:
+                changed = but(changed, "proof 5 concludes radius", "0")
+            accept(f"{'image' if n > 4 else 'target'} of {s} to the edge, {key}", changed)
+            reject(f"{'image' if n > 4 else 'target'} of {s} beyond the edge, {key}", but(changed, f"proof {n - 1} concludes {key}", hair(value, by)), "proof line 9" if n > 4 else "proof line 6", f"image[{s}] is not shown to stay in the region" if n > 4 else inside_ + s)
+    # two balls, or none
+    reject("two balls", but(one, "proof 8", {**one["proof"][5], "rule": "smaller-ball", "uses": [1, 2, 3], "concludes": {"radius": "1"}}), "results", "the proof has not exactly one ball about the target")
+    reject("no ball", without(one, 6), "results", "the proof has not exactly one ball about the target")
+    reject("two largest balls", but(one, "proof 8", one["proof"][5]), "results", "ball is proved more than once by largest-ball")
+
+
+def beyond_the_edge() -> None:
+    """A target shown up to beyond the edge by a line of its own: the ball uses another."""
+    one = little("box", ONE, ONE, "1", "1")
+    for s, n in (("x", 2), ("y", 3)):
+        for key, value, by in (("lower", "-1", -1), ("upper", "1", 1)):
+            wide = but(one, f"proof {n - 1} concludes {key}", value)
+            for line in (wide["proof"][5],):
+                line["uses"] = [1, 10 if n == 2 else 2, 10 if n == 3 else 3, 4]
+            order = [*wide["proof"][:5], one["proof"][n - 1], *wide["proof"][5:]]
+            moved_up = but(wide, "proof", order)
+            moved_up["proof"][6]["uses"] = [1, 6 if n == 2 else 2, 6 if n == 3 else 3, 4]
+            moved_up["proof"][9]["uses"] = [1, 2, 3, 8, 9]
+            accept(f"region, target of {s} to the edge, {key}", moved_up)
+            reject(f"region, target of {s} beyond the edge, {key}", but(moved_up, f"proof {n - 1} concludes {key}", hair(value, by)), "proof line 10", f"target[{s}] is not shown to stay in the region")
+
+
+balls()
+beyond_the_edge()
+
+
+def metrics_asked_for() -> None:
+    """The kind and the weights that the claim states, exactly; auto is any."""
+    kinds = {"box": (WEIGHTS, UNWEIGHTED, "1", "1"), "polytope": (SLANTED, UPRIGHT, "1", "1"), "ellipsoid": (THIRDS, OF_THIRDS, "3", "3")}
+    for asked in ("auto", "box", "polytope", "ellipsoid"):
+        for kind, (rows, inverse, radius, outer) in kinds.items():
+            first = (1,) if kind == "polytope" else (0,)
+            entries = little(kind, rows, inverse, radius, outer, first=first, rest=f'[metric]\nkind = "{asked}"' + ("\nweights = { y = 2 }" if asked == "box" else ""))
+            if asked in ("auto", kind):
+                accept(f"{kind} where {asked} is asked for", entries)
+            else:
+                reject(f"{kind} where {asked} is asked for", entries, "proof line 1", f"kind: the claim asks for {asked}")
+    for kind in ("auto", "box"):
+        for weights, good in (("x = 1, y = 2", ""), ("y = 2", ""), ('y = "sqrt(4)"', ""), ('y = "2 + 1/10**30"', "y"), ('y = "2 - 1/10**30"', "y"), ("x = 2", "x"), ("y = 1", "y"), ('y = "sqrt(2)*sqrt(2)"', "y"), ("x = 1", "y")):
+            entries = little("box", WEIGHTS, UNWEIGHTED, "1", "1", rest=f'[metric]\nkind = "{kind}"\nweights = {{ {weights} }}')
+            if good:
+                reject(f"{kind} of weights {weights}", entries, "proof line 1", f"rows: the weight of {good} is not the one the claim states, exactly")
+            else:
+                accept(f"{kind} of weights {weights}", entries)
+    reject("a box without weights", little("box", WEIGHTS, UNWEIGHTED, "1", "1", rest='[metric]\nkind = "box"'), "proof line 1", "rows: the weight of y")
+    accept("a box of ones", little("box", ONE, ONE, "1", "1", rest='[metric]\nkind = "box"'))
+    rows = little("ellipsoid", THIRDS, OF_THIRDS, "3", "3")
+    for path, value in (("matrix", THIRDS), ("matrix", [["25", "20"], ["20", "24"]]), ("kind", "polytope"), ("matrix", None)):
+        reject(f"metric shown as {path} {value}", but(rows, f"results metric {path}", value), "results", "results.metric: ")
+
+
+metrics_asked_for()
+
+
+@unit
+def affine_parts(checker: Any) -> None:
+    """Middle, slopes and rest of entries: of y + 2px, x, px about (1/2, 2, 0); of what jumps, only the ends."""
+    one = tuple(tuple(Q(x) for x in row) for row in ONE)
+    domain = checker.derive.Domain(False, Q(0), (Q(0), Q(0)), targets=((Q(0), Q(0)),) * 2, metric=checker.matrices.Metric("box", one, one))
+
+    def leaf(x: str, y: str, box: dict[str, tuple[Any, Any]], form: str, proves: str = "slopes") -> Any:
+        d = derivation(checker, claim(x, y, ends=("[-4, 4]", "[-4, 4]"), uncertain="p = [-1, 1]"))
+        table = checker.jacobians.Table(d, proves, domain, 0, None)
+        return [v.name for v in table.variables], table.leaf([tuple(map(Q, box[v.name])) for v in table.variables], form)
+
+    box: dict[str, tuple[Any, Any]] = {"x": (0, 1), "y": (1, 3), "p": (-1, 1)}
+    names, found = leaf("x*y + p*x**2", "p*x*y/1", box, "c")
+    assert found.centre == ((2, Q(1, 2)), (0, 0)), found
+    assert found.rest == ((2, 0), (2, 1)), found
+    slopes = dict(zip(names, found.slopes, strict=True))
+    assert slopes == {"x": ((0, Q(1, 2)), (0, 0)), "y": ((1, 0), (0, 0)), "p": ((1, 0), (2, 0))}, slopes
+    names, found = leaf("x*y + p*x**2", "p*x*y/1", box, "d")
+    assert found.centre == ((2, Q(1, 2)), (0, 0)) and found.rest == ((3, Q(1, 2)), (3, 1)) and found.slopes == (), found
+    # p x: in [-2, 2] either way, and then without slopes
+    for middle, half in ((1, 1), (2, 1)):
+        names, found = leaf("x*y*p", "0*x", {**box, "x": (middle - half, middle + half)}, "c")
+        assert found.centre[0] == (0, 0)
+        assert found.rest[0][1] == 2, found
+        got = {n: g[0][1] for n, g in zip(names, found.slopes, strict=False)}
+        assert not any(got.values()) if middle == 1 else sorted(got.values())[-1] == 2, got
+    # corners: of one side, of two
+    names, found = leaf("abs(x)*y", "0*x", {**box, "x": (1, 3)}, "c")
+    assert found.centre[0] == (2, 2) and found.rest[0] == (0, 0), found
+    names, found = leaf("abs(x)*y", "0*x", {**box, "x": (-1, 2)}, "c")
+    assert found.centre[0][0] == 0 and found.rest[0][0] == 3, found
+    # misses: p**2 + 3p on [0, 1]; |p| on [-1, 3], where the ends are closer
+    names, found = leaf("x + p**2 + 3*p", "abs(p)", {"p": (0, 1)}, "c", "misses")
+    assert found.centre == ((Q(7, 4),), (Q(1, 2),)) and found.rest == ((Q(1, 2),), (0,)) and found.slopes == (((2,), (Q(1, 2),)),), found
+    names, found = leaf("x", "abs(p)", {"p": (-1, 1)}, "c", "misses")
+    assert found.centre == ((0,), (Q(1, 2),)) and found.rest == ((0,), (Q(1, 2),)), found
+    d = derivation(checker, claim("x/2", "y/2"))
+    with refuses(checker.numerals.Rejected, "a matrix proves slopes or misses"):
+        checker.jacobians.Table(d, "norms", domain, 0, None)
+
+
+@unit
+def points_and_balls(checker: Any) -> None:
+    """An error is a state less its target, wherever in its range that is: middles and half widths."""
+    inside, rejected = checker.jacobians.inside, checker.numerals.Rejected
+    rows, inverse = (tuple(tuple(Q(x) for x in row) for row in m) for m in (SLANTED, UPRIGHT))
+    norm = checker.matrices.Metric("polytope", rows, inverse)
+    d = derivation(checker, claim("x/2", "y/2"))
+    domain = checker.derive.Domain(True, Q(3, 2), (Q(-1, 8), Q(1, 4)), targets=((Q(-1, 8), Q(1, 4)), (Q(0), Q(1, 4))), metric=norm)
+    # |x - 1/16| 2 + 3/8 + |y - 1/8| + 1/8 <= 3/2
+    tiny = Q("1" + STEP)
+    for x, y in ((Q(1, 16), Q(9, 8)), (Q(1, 16), Q(-7, 8)), (Q(9, 16), Q(1, 8)), (Q(-7, 16), Q(1, 8)), (Q(5, 16), Q(5, 8)), (Q(-3, 16), Q(-3, 8))):
+        inside(d, domain, {"x": (x, x), "y": (y, y)})
+        for dx, dy in ((0, 1 if y >= Q(1, 8) else -1), (1 if x >= Q(1, 16) else -1, 0)):
+            if (dx and x != Q(1, 16)) or (dy and y != Q(1, 8)):
+                with refuses(rejected, "at: not shown to be in the set"):
+                    inside(d, domain, {"x": (x + dx * tiny,) * 2, "y": (y + dy * tiny,) * 2})
+    # one on its target, the other at its error; a point that is known to ends only
+    inside(d, domain, {"error(x)": (Q(3, 4), Q(3, 4))})
+    inside(d, domain, {"error(x)": (Q(1, 4), Q(3, 4)), "error(y)": (Q(0), Q(0))})
+    inside(d, domain, {"error(y)": (Q(-3, 2), Q(1))})
+    inside(d, domain, {})
+    for at in ({"error(x)": (Q(1, 4), Q(3, 4) + tiny)}, {"error(y)": (Q(-3, 2) - tiny, Q(1))}, {"error(x)": (Q(1, 4), Q(1, 4)), "error(y)": (Q(1) + tiny,) * 2}):
+        with refuses(rejected, "at: not shown to be in the set"):
+            inside(d, domain, at)
+    for other in (None, checker.derive.Domain(False, Q(0), (Q(0), Q(0)), targets=domain.targets, metric=norm), checker.derive.Domain(True, Q(1, 9), (Q(0), Q(0)))):
+        inside(d, other, {"x": (Q(9), Q(9)), "y": (Q(9), Q(9))})
+
+
+@unit
+def cuts_of_all(checker: Any) -> None:
+    """Variables of several obligations, in the order met, cut wherever one of them is."""
+    ranged, meaning = checker.derive.Ranged, checker.derive.Meaning
+    a = ranged("a", ((Q(0), Q(1)), (Q(1), Q(3))), (Q(0), Q(3)), False)
+    b = ranged("a", ((Q(0), Q(2)), (Q(2), Q(3))), (Q(0), Q(3)), False)
+    c = ranged("c", ((Q(5), Q(5)), (Q(1), Q(1))), (Q(5), Q(5)), True)
+    e = ranged("c", ((Q(5), Q(5)),), (Q(5), Q(5)), True)
+    found = checker.jacobians.together([meaning(0, "", [c, a], True), meaning(0, "", [b], True), meaning(0, "", [e, b], True)])
+    assert [(v.name, v.cells, v.listed) for v in found] == [("c", c.cells, True), ("a", ((0, 1), (1, 2), (2, 3)), False)], found
+    assert checker.jacobians.together([meaning(0, "", [a], True), meaning(0, "", [a], True)]) == [a]
+
+
 # fmt: on
 
 
