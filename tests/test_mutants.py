@@ -12,7 +12,7 @@ from collections.abc import Callable
 
 import pytest
 
-from tests.checker import test_boundaries, test_matrices, test_reading, test_stance_boundaries
+from tests.checker import test_boundaries, test_matrices, test_reading, test_several_boundaries, test_stance_boundaries
 from tests.mutants import EQUIVALENT, Battery, Copies, Mutant, campaign, mutants, table
 
 LONG = os.environ.get("ULTIBOUND_LONG") == "1"
@@ -34,6 +34,7 @@ PROOFS = (
 )
 STANCES = ("calculus", "motion", "models", "rates", "flows")
 NORMS = ("matrices",)
+SEVERAL = ("jacobians", "several", "outcomes")
 READING = ("grammar", "numerals", "statement", "tables", "scope", "command")
 SAMPLE, SEED = 32, 20260101
 MOST_EQUIVALENT = 0.05
@@ -46,7 +47,7 @@ def copies() -> Copies:
 
 @pytest.fixture(scope="module")
 def found(copies: Copies) -> dict[str, list[Mutant]]:
-    return {m: mutants(m, copies.source[m]) for m in PROOFS + STANCES + NORMS + READING}
+    return {m: mutants(m, copies.source[m]) for m in PROOFS + STANCES + NORMS + SEVERAL + READING}
 
 
 @pytest.fixture(scope="module")
@@ -54,11 +55,16 @@ def batteries(copies: Copies) -> dict[str, Battery]:
     """Of each module: what notices nothing about the unchanged copy."""
     reading, stances = Battery(test_reading.CASES, 400), Battery(test_stance_boundaries.CASES)
     norms = Battery(test_matrices.CASES)
-    proofs = Battery(test_boundaries.CASES | {f"stance: {n}": q for n, q in test_stance_boundaries.CASES.items()})
+    several = Battery(test_several_boundaries.CASES)
+    stance_cases = {f"stance: {n}": q for n, q in test_stance_boundaries.CASES.items()}
+    several_cases = {f"several: {n}": q for n, q in test_several_boundaries.CASES.items()}
+    proofs = Battery(test_boundaries.CASES | stance_cases | several_cases)
     assert proofs.noticed(copies, {}) is None and reading.noticed(copies, {}) is None
     assert norms.noticed(copies, {}) is None
+    assert several.noticed(copies, {}) is None
     of_norms, of_reading = dict.fromkeys(NORMS, norms), dict.fromkeys(READING, reading)
-    return dict.fromkeys(PROOFS, proofs) | dict.fromkeys(STANCES, stances) | of_norms | of_reading
+    of_several = dict.fromkeys(SEVERAL, several)
+    return dict.fromkeys(PROOFS, proofs) | dict.fromkeys(STANCES, stances) | of_norms | of_several | of_reading
 
 
 def test_each_equivalent_stands_in_the_source(found: dict[str, list[Mutant]]) -> None:

@@ -860,10 +860,16 @@ def routes() -> None:
             accept(f"weight {weight}", changed)
         else:
             reject(f"weight {weight}", changed, "claim", "only the weight 1")
-    two = claim(state="[-1, 1]\nu = [0, 1]").replace("[target]", 'u = "u"\n[target]').replace('v = "0"', 'v = "0"\nu = "0"')
-    reject("two states", but(BASE, "claim text", two), "claim", "claims of one state and one stance")
+    for several in (1, 5, 6):
+        more = "".join(f"u{i} = [0, 1]\n" for i in range(several))
+        text = claim(state=f"[-1, 1]\n{more}").replace("[target]", more.replace("[0, 1]", '"0"') + "[target]").replace('v = "0"', 'v = "0"\n' + more.replace("[0, 1]", '"0"'))
+        place, reason = ("proof line 2", "ball rests on metric metric") if several < 6 else ("claim", "only the route slope can be checked for two to 6 states")
+        reject(f"{several + 1} states", but(BASE, "claim text", text), place, reason)
+    for top in ('route = "curve"', 'route = "split"\ncorrection = ["f"]'):
+        text = claim(state="[-1, 1]\nu = [0, 1]", top=top, rest="[define]\nf = 1").replace("[target]", 'u = "u"\n[target]').replace('v = "0"', 'v = "0"\nu = "0"')
+        reject(f"two states, {top}", but(BASE, "claim text", text), "claim", "only the route slope can be checked for two to 6 states")
     stance = '[stance.only]\nthen = "only"'
-    reject("a named stance", but(BASE, "claim text", claim(rest=stance)), "claim", "claims of one state and one stance")
+    reject("a named stance", but(BASE, "claim text", claim(rest=stance)), "claim", "only claims of one stance can be checked")
     reject("stances", but(BASE, "claim text", claim(rest='[stance.a]\nthen = "b"\n[stance.b]\nthen = "a"')), "claim", "one stance")
     running = '[dynamics]\nduration = 1\nstart = { x = 0 }\nrate = { x = 0 }'
     reject("dynamics of which nothing is shown", but(BASE, "claim text", claim(rest=running)), "results", "results.set.kind: 'region' is claimed, None was derived")

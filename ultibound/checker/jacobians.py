@@ -6,10 +6,12 @@ from collections.abc import Iterator, Mapping
 from dataclasses import replace
 from fractions import Fraction
 from itertools import pairwise, product
+from math import prod
 from typing import Any
 
+from .calculus import Unprovable
 from .courses import arithmetic, valued
-from .derive import Derivation, Domain, Meaning, Ranged
+from .derive import MOST_CELLS, Derivation, Domain, Meaning, Ranged
 from .flows import Flows
 from .forms import boxes
 from .matrices import Leaf, Matrix
@@ -31,6 +33,8 @@ class Table:
         names = [[f"slope[{s},{x}]" if x else f"target-miss[{s}]" for x in columns] for s in d.states]
         meanings = [[d.meaning(name, domain) for name in row] for row in names]
         self.variables = together([m for row in meanings for m in row])
+        if prod(len(v.cells) for v in self.variables) > MOST_CELLS:
+            raise Unprovable(f"more than {MOST_CELLS} combinations of library cells and listed values")
         met = [v.name for v in self.variables]
         constant = d.signals(set(met))  # of several states that answer a signal, one constant serves them all
         self.variables = [replace(v, inside=constant[v.name][1]) if v.name in constant else v for v in self.variables]

@@ -27,6 +27,8 @@ class SeveralResults(Results):
         invariant = next((x for rule in rules if (x := self.one(rule, "invariant")) is not None), None)
         self.domain = invariant.domain if invariant is not None else ball.domain
         self.metric: Metric = balls[0].domain.metric
+        if self.domain is None or self.domain.metric != self.metric:
+            raise Rejected("the ball and the invariant set are of different metrics")
         self.lasting = self.derivation.motion is None or self.above(1)  # else points are of no stance
         self.unsupported = 0 if self.lasting else 1
         self.settled = invariant is not None and self.supported()
@@ -183,6 +185,8 @@ class SeveralResults(Results):
         proved = self.whole and compared(r.relation, upper, c)
         # in a metric the claim fixes, what is surely taken settles it; in another norm it might be less
         final = self.stated() and not self.any and r.kind != "bound" and found is not None
+        # nor is another route's gain, told apart from a correction, known from here
+        final &= r.kind != "gain" or self.statement.route == "slope" or not self.statement.correction
         return verdict(proved, final and opposed(r.relation, Span(None, found.lower if found else None), c), found)
 
     def long_run(self, s: str) -> Span | None:
