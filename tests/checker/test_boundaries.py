@@ -189,7 +189,12 @@ def but(entries: Entries, *changes: Any) -> Entries:
     return found
 
 
-GONE = object()
+class _Gone:
+    def __repr__(self) -> str:
+        return "gone"
+
+
+GONE = _Gone()
 
 
 def unit(question: Question) -> Question:

@@ -14,7 +14,7 @@ import pytest
 
 import ultibound.checker
 from tests.checker.test_boundaries import GONE, STEP, Case, Draft, Entries, Question, but, derivation, refuses, sealed
-from tests.checker.test_stance_boundaries import STILL, limited
+from tests.checker.test_stance_boundaries import limited
 
 CASES: dict[str, Question] = {}
 
