@@ -12,7 +12,14 @@ from collections.abc import Callable
 
 import pytest
 
-from tests.checker import test_boundaries, test_matrices, test_reading, test_several_boundaries, test_stance_boundaries
+from tests.checker import (
+    test_boundaries,
+    test_matrices,
+    test_periodic_boundaries,
+    test_reading,
+    test_several_boundaries,
+    test_stance_boundaries,
+)
 from tests.mutants import EQUIVALENT, Battery, Copies, Mutant, campaign, mutants, table
 
 LONG = os.environ.get("ULTIBOUND_LONG") == "1"
@@ -34,7 +41,7 @@ PROOFS = (
 )
 STANCES = ("calculus", "motion", "models", "rates", "flows")
 NORMS = ("matrices",)
-SEVERAL = ("jacobians", "several", "outcomes")
+SEVERAL = ("jacobians", "several", "outcomes", "periodic")
 READING = ("grammar", "numerals", "statement", "tables", "scope", "command")
 SAMPLE, SEED = 32, 20260101
 MOST_EQUIVALENT = 0.05
@@ -55,7 +62,7 @@ def batteries(copies: Copies) -> dict[str, Battery]:
     """Of each module: what notices nothing about the unchanged copy."""
     reading, stances = Battery(test_reading.CASES, 400), Battery(test_stance_boundaries.CASES)
     norms = Battery(test_matrices.CASES)
-    several = Battery(test_several_boundaries.CASES)
+    several = Battery(test_several_boundaries.CASES | test_periodic_boundaries.CASES)
     stance_cases = {f"stance: {n}": q for n, q in test_stance_boundaries.CASES.items()}
     several_cases = {f"several: {n}": q for n, q in test_several_boundaries.CASES.items()}
     proofs = Battery(test_boundaries.CASES | stance_cases | several_cases)

@@ -88,6 +88,8 @@ def periodic(d: Derivation, proves: str, used: list[Line], witness: dict[str, An
     domain, k = used[0].domain, used[1].concludes["gain"]
     if domain is None or domain.metric is None or used[1].domain != domain or not 0 <= k < 1:
         raise Rejected("the gain is not below 1, or refers to another set")
+    if set(claimed) != set(d.states):
+        raise Rejected("concludes: a distance for each state")
     norm, course = domain.metric, Round(d, witness, flows)
     states = course.follow()
     if not course.starts_in(domain, states[0]):
@@ -96,8 +98,6 @@ def periodic(d: Derivation, proves: str, used: list[Line], witness: dict[str, An
     near = norm.length(ends) / (1 - k ** len(course.values))
     for i, s in enumerate(d.states):
         errors = [(x[i][0] - course.centre[i][1], x[i][1] - course.centre[i][0]) for x in states[:-1]]
-        if not claimed.get(s, Fraction(-1)) <= max(map(nearest, errors)) - norm.support(i) * near:
+        if not claimed[s] <= max(map(nearest, errors)) - norm.support(i) * near:
             raise Rejected(f"{s}: more than what the orbit shows")
-    if set(claimed) != set(d.states):
-        raise Rejected("concludes: a distance for each state")
     return domain
