@@ -150,14 +150,68 @@ def held_targets() -> None:
         d.matrix("misses", "1/8", [7])
         d.theorem("slope", "slope", [8, 9], gain="1/2", residual="1/8")
         d.theorem("ultimate-bound", "bound[slope]", [7, 10], bound="1/4")
-        orbit(d, ("1/4", "0"), [{"p": "1/8"}], ("1/4", "0"), (7, 10), held={"h": h})
+        sign = "-" if h == "1/8" else ""
+        orbit(d, (f"{sign}1/4", "0"), [{"p": f"{sign}1/8"}], ("1/4", "0"), (7, 10), held={"h": h})
         entries = d.found("region", [("settles", "proved")], {"kind": "box", "weights": {"x": "1", "y": "1"}})
         accept(f"about the target at {h}", entries)
         reject(f"about the target at {h}, farther", but(entries, "proof 11 concludes x", hair("1/4", 1)), "proof line 12", "x: more than what the orbit shows")
         reject(f"about the target at {h}, h anew", but(entries, "proof 11 witness steps", [{"p": "1/8", "h": h}]), "proof line 12", "steps: one value")
 
 
+def corners() -> None:
+    """Starts at the lower ends, a gain of 0, rounding, two orbits that serve a state each, an orbit without a bound."""
+    d = region()
+    orbit(d, ("-1", "-1"), [DOWN], (str(1 - Q(7, 2)), str(1 - Q(7, 4))))
+    accept("orbit from the lower ends", d.found("region", [("settles", "proved")], BOX))
+    still = Lines(claim("p", "q", uncertain='p = ["-1/8", "1/8"]\nq = ["-1/16", "1/16"]', rest="[metric]\nweights = { y = 2 }"))
+    in_region(still)
+    entries = still.found("region", [("settles", "proved")], BOX)
+    flat = but(entries, "proof 5 concludes", {"lower": "-1/8", "upper": "1/8"}, "proof 6 concludes", {"lower": "-1/16", "upper": "1/16"}, "proof 8 concludes norm", "0", "proof 10 concludes gain", "0", "proof 11 concludes bound", "1/8")
+    flat = without(flat, 13, 14, 15, 16, 17)
+    line = {"rule": "periodic", "proves": "periodic", "uses": [8, 11], "witness": {"bits": 0, "held": {}, "start": {"x": "1/8", "y": "1/16"}, "steps": [UP]}, "concludes": {"x": "1/8", "y": "1/16"}}
+    accept("orbit, a gain of 0", but(flat, "proof", [*flat["proof"], line]))
+    # a tenth lies between two units of 2**-24: the farther end counts
+    tenth = Q(-(-(1 << 24) // 10), 1 << 24)
+    d = region()
+    orbit(d, ("0", "0"), [{"p": "1/10", "q": "0"}], (str(-4 * tenth), str(-2 * tenth)), bits=24)
+    rough = d.found("region", [("settles", "proved")], BOX)
+    accept("orbit, rounded", rough)
+    for s, x in (("x", -4 * tenth), ("y", -2 * tenth)):
+        reject(f"orbit, rounded: {s}", but(rough, f"proof 18 concludes {s}", hair(str(x), 1)), "proof line 19", f"{s}: more than what the orbit shows")
+    d = region(["bound(x) < 7/20", "bound(y) < 1/5"])
+    orbit(d, ("7/20", "1/5"), [UP], ("7/20", "-1"))
+    orbit(d, ("7/20", "1/5"), [UP], ("-1", "1/5"))
+    accept("an orbit each", d.found("region", [("bound(x) < 7/20", "refuted"), ("bound(y) < 1/5", "refuted")], BOX))
+    d = region(["bound(x) <= 1/8"])
+    orbit(d, ("7/20", "1/5"), [UP], ("7/20", "1/5"))
+    bare = without(d.found("region", [("bound(x) <= 1/8", "refuted")], BOX), 12, 13, 14, 15)
+    accept("an orbit without a bound", but(bare, "results states x bound", {"lower": "7/20", "upper": None}))
+
+
+def points() -> None:
+    """A point of a ball refutes only where the claim fixes its norm; where no state occurs, and on the region, always."""
+    asked = {"value(x) < 1/2": ("refuted", "undecided"), "value(p) < 1/8": ("refuted", "refuted")}
+    d = ball(list(asked))
+    d.range("require[1]", "-1", "1", [6])
+    d.point("require[1]", {"x": "1"}, "1", uses=[6])
+    d.range("require[2]", "-1/8", "1/8", [6])
+    d.point("require[2]", {"p": "1/8"}, "1/8", uses=[6])
+    entries = d.found("ball", [(that, v[1]) for that, v in asked.items()], {"kind": "polytope", "matrix": [["2", "1"], ["2", "-1"]]})
+    entries = without(entries, 11, 12)
+    accept("points of a ball", entries)
+    reject("points of a ball: x refuted", but(entries, "results requirements 0 verdict", "refuted"), "results", "[1].verdict: refuted is claimed, undecided was derived")
+    for rest in ("", "[metric]\nweights = { y = 2 }"):
+        d = region(list(asked), rest=rest)
+        d.range("require[1]", "-1", "1", [8])
+        d.point("require[1]", {"x": "1"}, "1", uses=[8])
+        d.range("require[2]", "-1/8", "1/8", [8])
+        d.point("require[2]", {"p": "1/8"}, "1/8", uses=[8])
+        accept(f"points of a region, {rest[:8]!r}", d.found("region", [(that, "refuted") for that in asked], BOX))
+
+
 rounds()
+corners()
+points()
 figures()
 edges()
 on_ball()
