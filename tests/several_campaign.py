@@ -130,13 +130,19 @@ def closed(seed: int, kind: str) -> Case:
     for i, s in enumerate(states):
         linear = " + ".join(f"({matrix[i, j]:.3f})*({x} - ({targets[x]}))" for j, x in enumerate(states))
         other = rng.choice(states)
-        inner = rng.choice(SMOOTH).format(rng.choice([s, other, "d", f"({s}*T)", f"({s} - d)", f"({s} + 0.1*h)", f"({s}*{other})"]))
+        inner = rng.choice(SMOOTH).format(
+            rng.choice([s, other, "d", f"({s}*T)", f"({s} - d)", f"({s} + 0.1*h)", f"({s}*{other})"])
+        )
         outer = rng.choice(SMOOTH).format(f"(0.4*{rng.choice([inner, f'({other}*d)', f'(d - {other})'])})")
         bend = "0"
         if KINDS[kind] and (i == 0 or rng.random() < 0.3):
-            bend = rng.choice(KINDS[kind]).format(rng.choice([s, f"({s} - {other})", f"({other} + 0.5*T - 0.2)", f"({s} - d)"]))
+            bend = rng.choice(KINDS[kind]).format(
+                rng.choice([s, f"({s} - {other})", f"({other} + 0.5*T - 0.2)", f"({s} - d)"])
+            )
         mean = 0.8 if "exp" in inner + outer or "cosh" in inner + outer else 0.3
-        bodies[s] = f"{targets[s]} + {linear} + {size:.3f}*({outer} + {inner} + {bend} - {mean}) + {rng.uniform(-0.02, 0.02):.3f}*d"
+        bodies[s] = (
+            f"{targets[s]} + {linear} + {size:.3f}*({outer} + {inner} + {bend} - {mean}) + {rng.uniform(-0.02, 0.02):.3f}*d"
+        )
     spans = {s: (-round(rng.uniform(0.4, 1.0), 2), round(rng.uniform(0.4, 1.0), 2)) for s in states}
     rows, read = library(rng)
     uses = any("reach" in b for b in bodies.values())
@@ -149,7 +155,7 @@ def closed(seed: int, kind: str) -> Case:
         "T": (0.3, 0.6, 0.0 if held_time else None, times if listed else None),
         "h": (-0.3, 0.3, 0.05, None),
     }
-    text = "format = 1\n" + f'shrink = {"true" if rng.random() < 0.3 else "false"}\n'
+    text = "format = 1\n" + f"shrink = {'true' if rng.random() < 0.3 else 'false'}\n"
     text += "[state]\n" + "".join(f"{s} = [{a}, {b}]\n" for s, (a, b) in spans.items())
     text += f"[uncertain]\nd = [-0.2, 0.3]\nT = {{ {period}{', held = true' if held_time else ''} }}\n"
     text += "h = { range = [-0.3, 0.3], held = true, change = 0.05 }\n"
@@ -178,7 +184,11 @@ def stance(seed: int) -> Case:
     rng = random.Random(seed)
     n = 2 + seed // 7 % 2
     states = list("xvi"[:n])
-    kappa, sway, loss = round(rng.uniform(1.1, 1.35), 3), round(rng.uniform(0.0, 0.08), 3), round(rng.uniform(0, 0.1), 3)
+    kappa, sway, loss = (
+        round(rng.uniform(1.1, 1.35), 3),
+        round(rng.uniform(0.0, 0.08), 3),
+        round(rng.uniform(0, 0.1), 3),
+    )
     feed = round(rng.uniform(0.0, 0.1), 3) if n == 3 else 0.0
     bend = round(rng.uniform(0.0, 0.1), 3)
     held_time = rng.random() < 0.5
@@ -222,7 +232,10 @@ kind = "{rng.choice(METRICS)}"
 that = "throughout(X <= 0.6)"
 {ASKED.format(last=states[-1])}
 """
-    foot = eval(f"lambda x, v, i, d, h: {kappa}*(x + (v - 0.5*h)/{(9.81 / 0.9) ** 0.5!r}) + d + {bend}*{corner} + {feed}*i", NAMES)
+    foot = eval(
+        f"lambda x, v, i, d, h: {kappa}*(x + (v - 0.5*h)/{(9.81 / 0.9) ** 0.5!r}) + d + {bend}*{corner} + {feed}*i",
+        NAMES,
+    )
 
     def move(x: Any, values: Values) -> tuple[Any, Any]:
         d, h = values["d"], values["h"]
@@ -253,7 +266,9 @@ that = "throughout(X <= 0.6)"
         return np.stack([0 * h, 0.5 * h, 0 * h][:n])
 
     low, high = np.array([-0.3, -1, -0.3])[:n], np.array([0.3, 1, 0.3])[:n]
-    return Case(text, {}, "stance", states, low, high, lambda x, v: move(x, v)[0], aim, drawn, lambda x, v: move(x, v)[1])
+    return Case(
+        text, {}, "stance", states, low, high, lambda x, v: move(x, v)[0], aim, drawn, lambda x, v: move(x, v)[1]
+    )
 
 
 @dataclass
@@ -309,7 +324,9 @@ class Run:
             if e["verdict"] == "undecided":
                 tally.reasons[e["limited_by"].split(":")[0][:70]] += 1
         self.ball = Ball.of(r["metric"], c.states)
-        held = {k: np.linspace(a, b, 101) for k, (a, b, change, _) in c.drawn.items() if change is not None and k == "h"}
+        held = {
+            k: np.linspace(a, b, 101) for k, (a, b, change, _) in c.drawn.items() if change is not None and k == "h"
+        }
         aims = c.aim(held)
         self.radius = self.ball.largest(np.minimum(aims.min(axis=1) - c.low, c.high - aims.max(axis=1)))
         if self.kind in ("ball", "smaller ball"):
@@ -332,7 +349,11 @@ class Run:
         found = {}
         for name, x in held.items():
             a, b, change, _ = self.c.drawn[name]
-            found[name] = np.clip(x + self.rng.choice([-1.0, 0.0, 1.0], shape) * (change or 0.0), a, b) if change else x + np.zeros(shape)
+            found[name] = (
+                np.clip(x + self.rng.choice([-1.0, 0.0, 1.0], shape) * (change or 0.0), a, b)
+                if change
+                else x + np.zeros(shape)
+            )
         return found
 
     def starts(self, held: Values) -> tuple[Any, Any]:
@@ -350,7 +371,9 @@ class Run:
         else:
             e = self.rng.standard_normal((dims, n))
             e = np.linalg.solve(self.ball.rows, e) if self.rng.random() < 0.7 else e
-            x = aims + e / self.ball.size(e) * self.radius * np.where(self.rng.random(n) < 0.5, 1 - RADIUS, self.rng.random(n))
+            x = aims + e / self.ball.size(e) * self.radius * np.where(
+                self.rng.random(n) < 0.5, 1 - RADIUS, self.rng.random(n)
+            )
         x[:, : n // 4] = aims[:, : n // 4]
         for i, s in enumerate(c.states):
             reach = lower(self.results["states"][s]["radius"])
@@ -359,7 +382,9 @@ class Run:
                 x[:, part] = aims[:, part]
                 x[i, part] += reach * (1 - RADIUS) * np.array([1, -1, 1, -1, 0.5, -0.5, 0.1, -0.1])
                 short = n // 4 + 8 * i + 6
-                x[i, short : short + 2] = aims[i, short : short + 2] + min(reach, 0.1) * (1 - RADIUS) * np.array([1, -1])
+                x[i, short : short + 2] = aims[i, short : short + 2] + min(reach, 0.1) * (1 - RADIUS) * np.array(
+                    [1, -1]
+                )
                 alone[part] = i
         return x, alone
 
@@ -398,7 +423,11 @@ class Run:
             error = after - aims
             if self.kind != "none":
                 self.check_step(x, after, values, aims_now, error)
-            score = np.where(manner == 0, np.einsum("nk,kcn->cn", functionals[step % LOOK][which], error) * signs, self.ball.size(error))
+            score = np.where(
+                manner == 0,
+                np.einsum("nk,kcn->cn", functionals[step % LOOK][which], error) * signs,
+                self.ball.size(error),
+            )
             each = np.take_along_axis(np.abs(error), np.broadcast_to(which, (1, CANDIDATES, n)), axis=0)[0]
             score = np.where(manner == 1, each, score)
             score = np.where(manner == 3, self.rng.random(shape), score)
@@ -419,7 +448,10 @@ class Run:
                     reach = k**step * start_size + e * (1 - k**step) / (1 - k)
                     assert np.all(size <= reach * (1 + 1e-6) + 1e-9), (self.seed, "envelope", step)
                 for i, bound in enumerate(self.bounds):
-                    assert bound is None or np.all(np.abs(error[i, on_target]) <= bound * (1 + 1e-6) + 1e-9), (self.seed, "bound from target")
+                    assert bound is None or np.all(np.abs(error[i, on_target]) <= bound * (1 + 1e-6) + 1e-9), (
+                        self.seed,
+                        "bound from target",
+                    )
                 for i, found in steps.items():
                     count = upper(found["value"]) if found is not None else None
                     if count is not None and step >= count:
@@ -457,7 +489,10 @@ class Run:
         k, e = self.gain, self.residual
         before = self.ball.size(x - aims_now)
         if k is not None and e is not None:
-            assert np.all(self.ball.size(error) <= (k * before + e) * (1 + self.slack) + 1e-9), (self.seed, "inequality")
+            assert np.all(self.ball.size(error) <= (k * before + e) * (1 + self.slack) + 1e-9), (
+                self.seed,
+                "inequality",
+            )
             other = x + self.rng.uniform(-1, 1, x.shape) * self.rng.choice([1e-3, 0.3]) * (c.high - c.low)[:, None]
             both = self.inside(other, aims_now)
             one = {q: v[0] for q, v in values.items()}

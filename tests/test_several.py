@@ -2,6 +2,8 @@
 
 from __future__ import annotations
 
+import copy
+import json
 import os
 from collections.abc import Callable
 from fractions import Fraction
@@ -12,6 +14,7 @@ from scipy.linalg import solve_discrete_lyapunov
 
 from tests.conftest import ends, proved
 from tests.published.test_several import bounds, linear, verdicts
+from ultibound.checker import check
 
 COUNT = 50
 EVERY = 1 if os.environ.get("ULTIBOUND_LONG") else 3
@@ -63,3 +66,47 @@ def test_bounds_hold_the_exact_sums(record_property: Callable[[str, str], None])
     table += [f"{n:6d}{len(x):8d}{np.median(x):9.3f}{max(x):9.3f}" for n, x in sorted(ratios.items())]
     record_property("table", "\n".join(table))
     assert all(np.median(x) < 2.5 and max(x) < 12 for x in ratios.values())
+
+
+BENT = """
+format = 1
+[state]
+x = [-1, 1]
+y = [-1, 1]
+[uncertain]
+d = [-0.02, 0.02]
+[next]
+x = "0.5*x + 0.2*sin(y) + d"
+y = "0.3*y - 0.2*{corner}"
+[target]
+x = 0
+y = 0
+[metric]
+kind = "ellipsoid"
+[[require]]
+that = "settles"
+"""
+
+
+class TestMatricesInTheCertificate:
+    def test_a_tree_too_coarse_for_what_is_claimed_is_refused_on_every_line(self) -> None:
+        """Leaves are evaluated once for all lines with the same tree; another tree is another matter."""
+        entries = json.loads(proved(BENT.format(corner="tanh(2*x)")).to_bytes())
+        texts = [json.dumps(entries)]
+        for number, line in enumerate(entries["proof"]):
+            if line["rule"] in ("matrix", "entries") and line["proves"] == "slopes":
+                spoiled = copy.deepcopy(entries)
+                spoiled["proof"][number]["witness"]["trees"] = ["d"]
+                texts.append(json.dumps(spoiled))
+        assert len(texts) > 2
+        assert [check(t.encode()).status == "valid" for t in texts] == [True] + [False] * (len(texts) - 1)
+
+    def test_a_jump_that_keeps_the_gap_open_ends_the_search_early(self) -> None:
+        r = proved(BENT.format(corner="abs(x - 0.3*y)"))
+        assert r.results["requirements"][0]["verdict"] == "proved"
+        leaves = max(
+            sum(x in ("c", "d") for t in line["witness"]["trees"] for x in t.split(" "))
+            for line in r.entries["proof"]
+            if line["rule"] == "matrix"
+        )
+        assert leaves < 2000
