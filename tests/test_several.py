@@ -15,6 +15,7 @@ from scipy.linalg import solve_discrete_lyapunov
 from tests.conftest import ends, proved
 from tests.published.test_several import bounds, linear, verdicts
 from ultibound.checker import check
+from ultibound.claim import ClaimError
 
 COUNT = 50
 EVERY = 1 if os.environ.get("ULTIBOUND_LONG") else 3
@@ -110,3 +111,47 @@ class TestMatricesInTheCertificate:
             if line["rule"] == "matrix"
         )
         assert leaves < 2000
+
+
+PLAIN = """
+format = 1
+[state]
+x = {x}
+y = {y}
+[uncertain]
+d = [-0.01, 0.01]
+h = {{ range = [-1, 1], held = true, change = 0.01 }}
+[next]
+x = "{step}"
+y = "0.3*y - 0.1*x"
+[target]
+x = "{target}"
+y = 0
+{more}
+"""
+ORDINARY = {"x": "[-1, 1]", "y": "[-1, 1]", "step": "0.5*x + 0.2*y + d", "target": "0", "more": ""}
+
+
+class TestUnusualClaims:
+    @pytest.mark.parametrize(
+        "given",
+        [
+            {"y": "[0, 0]"},
+            {"target": "1"},
+            {"target": "h", "step": "0.5*(x - h) + h + d"},
+            {"more": '[[require]]\nthat = "bound(x) <= 0.5"\nover = { y = [0, 0] }'},
+        ],
+    )
+    def test_a_target_on_the_edge_leaves_no_room_for_a_ball(self, given: dict[str, str]) -> None:
+        r = proved(PLAIN.format(**ORDINARY | given)).results
+        assert "proved" not in verdicts(r)
+
+    @pytest.mark.parametrize("step", ["0.5*sqrt(abs(x)) + d", "0.3*sqrt(1 + x)"])
+    def test_slopes_without_a_limit_are_undecided(self, step: str) -> None:
+        r = proved(PLAIN.format(**ORDINARY | {"step": step})).results
+        assert verdicts(r) == ["undecided"] and r["gain"] is None
+
+    def test_a_weight_that_is_not_rational_is_an_error(self) -> None:
+        more = '[metric]\nkind = "box"\nweights = { x = 1, y = "sqrt(2)" }'
+        with pytest.raises(ClaimError, match=r"metric\.weights\.y"):
+            proved(PLAIN.format(**ORDINARY | {"more": more}))

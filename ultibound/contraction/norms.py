@@ -124,8 +124,9 @@ def over_boxes(norm: Norm, a: Affine) -> tuple[Floats, Floats]:
     """Upper estimates of the norm over boxes, and the signs (boxes, variables) of the corner it is largest at."""
     boxes, count = a.lost.shape[:2]
     right = norm.inverse if norm.inverse is not None else np.eye(a.centre.shape[2])
-    centre, slopes = norm.rows @ a.centre @ right, norm.rows @ a.slopes @ right
-    rest = np.abs(norm.rows) @ a.rest @ np.abs(right)
+    with np.errstate(invalid="ignore", over="ignore"):
+        centre, slopes = norm.rows @ a.centre @ right, norm.rows @ a.slopes @ right
+        rest = np.abs(norm.rows) @ a.rest @ np.abs(right)
     size = np.abs(slopes).sum(axis=(2, 3))
     order = np.argsort(-size.max(axis=0, initial=0.0), kind="stable")
     moving = [int(k) for k in order if size[:, k].max(initial=0.0) > 0]
@@ -177,7 +178,8 @@ def _length(m: Floats) -> Floats:
 
 def size(norm: Norm, m: Floats) -> Floats:
     """The norm of matrices (points, n, c)."""
-    b = norm.rows @ m @ (norm.inverse if norm.inverse is not None else np.eye(m.shape[2]))
+    with np.errstate(invalid="ignore", over="ignore"):
+        b = norm.rows @ m @ (norm.inverse if norm.inverse is not None else np.eye(m.shape[2]))
     return _length(b) if norm.round else np.abs(b).sum(axis=2).max(axis=1)
 
 

@@ -148,6 +148,7 @@ class SeveralAttempt(Attempt):
         slopes, misses = self._matrices("slopes", domain), self._matrices("misses", domain)
         jacobians, missed = (self._sampled(m, rng) for m in (slopes, misses))
         room = np.array([to_float(x) for x in self._rooms()])
+        room = np.where(room > 0, room, max(float(room.max()), 0.0) or 1.0)  # a target on the edge: any scale will do
         claim = self.claim
         kind, weights = claim.metric, None
         if kind == "box" or claim.weights:
