@@ -29,7 +29,7 @@ KINDS = {
     "stance": [],
 }
 METRICS = ["auto", "auto", "box", "polytope", "ellipsoid"]
-SLICES = 48  # of a stance, for Runge and Kutta's method
+SLICES = 32  # of a stance, for Runge and Kutta's method
 CANDIDATES, LOOK = 12, 15  # values tried a step; steps over which a functional is led back
 RADIUS = 1e-9  # share of a radius that floating point may be off
 Values = dict[str, Any]

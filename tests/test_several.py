@@ -2,6 +2,8 @@
 
 from __future__ import annotations
 
+import copy
+import json
 import os
 from collections.abc import Callable
 from fractions import Fraction
@@ -12,6 +14,8 @@ from scipy.linalg import solve_discrete_lyapunov
 
 from tests.conftest import ends, proved
 from tests.published.test_several import bounds, linear, verdicts
+from ultibound.checker import check
+from ultibound.claim import ClaimError
 
 COUNT = 50
 EVERY = 1 if os.environ.get("ULTIBOUND_LONG") else 3
@@ -63,3 +67,91 @@ def test_bounds_hold_the_exact_sums(record_property: Callable[[str, str], None])
     table += [f"{n:6d}{len(x):8d}{np.median(x):9.3f}{max(x):9.3f}" for n, x in sorted(ratios.items())]
     record_property("table", "\n".join(table))
     assert all(np.median(x) < 2.5 and max(x) < 12 for x in ratios.values())
+
+
+BENT = """
+format = 1
+[state]
+x = [-1, 1]
+y = [-1, 1]
+[uncertain]
+d = [-0.02, 0.02]
+[next]
+x = "0.5*x + 0.2*sin(y) + d"
+y = "0.3*y - 0.2*{corner}"
+[target]
+x = 0
+y = 0
+[metric]
+kind = "ellipsoid"
+[[require]]
+that = "settles"
+"""
+
+
+class TestMatricesInTheCertificate:
+    def test_a_tree_too_coarse_for_what_is_claimed_is_refused_on_every_line(self) -> None:
+        """Leaves are evaluated once for all lines with the same tree; another tree is another matter."""
+        entries = json.loads(proved(BENT.format(corner="tanh(2*x)")).to_bytes())
+        texts = [json.dumps(entries)]
+        for number, line in enumerate(entries["proof"]):
+            if line["rule"] in ("matrix", "entries") and line["proves"] == "slopes":
+                spoiled = copy.deepcopy(entries)
+                spoiled["proof"][number]["witness"]["trees"] = ["d"]
+                texts.append(json.dumps(spoiled))
+        assert len(texts) > 2
+        assert [check(t.encode()).status == "valid" for t in texts] == [True] + [False] * (len(texts) - 1)
+
+    def test_a_jump_that_keeps_the_gap_open_ends_the_search_early(self) -> None:
+        r = proved(BENT.format(corner="abs(x - 0.3*y)"))
+        assert r.results["requirements"][0]["verdict"] == "proved"
+        leaves = max(
+            sum(x in ("c", "d") for t in line["witness"]["trees"] for x in t.split(" "))
+            for line in r.entries["proof"]
+            if line["rule"] == "matrix"
+        )
+        assert leaves < 2000
+
+
+PLAIN = """
+format = 1
+[state]
+x = {x}
+y = {y}
+[uncertain]
+d = [-0.01, 0.01]
+h = {{ range = [-1, 1], held = true, change = 0.01 }}
+[next]
+x = "{step}"
+y = "0.3*y - 0.1*x"
+[target]
+x = "{target}"
+y = 0
+{more}
+"""
+ORDINARY = {"x": "[-1, 1]", "y": "[-1, 1]", "step": "0.5*x + 0.2*y + d", "target": "0", "more": ""}
+
+
+class TestUnusualClaims:
+    @pytest.mark.parametrize(
+        "given",
+        [
+            {"y": "[0, 0]"},
+            {"target": "1"},
+            {"target": "h", "step": "0.5*(x - h) + h + d"},
+            {"more": '[[require]]\nthat = "bound(x) <= 0.5"\nover = { y = [0, 0] }'},
+        ],
+    )
+    def test_a_target_on_the_edge_leaves_no_room_for_a_ball(self, given: dict[str, str]) -> None:
+        r = proved(PLAIN.format(**ORDINARY | given)).results
+        assert "proved" not in verdicts(r)
+
+    @pytest.mark.parametrize("step", ["0.5*sqrt(abs(x)) + d", "0.3*sqrt(1 + x)"])
+    def test_slopes_without_a_limit_are_undecided(self, step: str) -> None:
+        r = proved(PLAIN.format(**ORDINARY | {"step": step})).results
+        assert verdicts(r) == ["undecided"] and r["gain"] is None
+
+    def test_a_weight_that_is_not_rational_is_an_error(self) -> None:
+        more = '[metric]\nkind = "box"\nweights = { x = 1, y = "sqrt(2)" }'
+        with pytest.raises(ClaimError, match=r"metric\.weights\.y"):
+            proved(PLAIN.format(**ORDINARY | {"more": more}))

@@ -7,6 +7,7 @@ from dataclasses import dataclass, replace
 from fractions import Fraction
 from itertools import pairwise
 from math import prod
+from typing import Any
 
 from .calculus import Unprovable
 from .grammar import constant
@@ -113,6 +114,7 @@ class Derivation:
         self.motion: Motion | None = None
         if stance.dynamics is not None:
             self.motion = motion(Names(self.terms, statement, {}, ""))
+        self.leaves: dict[str, Any] = {}  # of the last tree gone through, by what it proves (several.py)
         self.fixed = {s for s in self.states if not self.terms.variables(self.names().of(f"target({s})"))}
 
     def names(self, bound: dict[str, int] | None = None, cut: str = "") -> Names:

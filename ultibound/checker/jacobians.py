@@ -39,7 +39,7 @@ class Table:
         constant = d.signals(set(met))  # of several states that answer a signal, one constant serves them all
         self.variables = [replace(v, inside=constant[v.name][1]) if v.name in constant else v for v in self.variables]
         self.roots = [[m.root for m in row] for row in meanings]
-        self.below = {k: d.terms.below(k) for row in self.roots for k in row}
+        self.below = {k: frozenset(d.terms.below(k)) for row in self.roots for k in row}
         self.columns = [  # entries of a column have the same marked name, and share most of their terms
             Evaluator(d.terms, first, column[0].by, met, d.statement.libraries, self.a, flows, others)
             for column in zip(*meanings, strict=True)

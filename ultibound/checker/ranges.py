@@ -6,7 +6,7 @@ proofs/forms.md (5) and (6), proofs/corners.md, proofs/reading.md.
 from __future__ import annotations
 
 from bisect import bisect_left, bisect_right
-from collections.abc import Callable, Iterable, Sequence
+from collections.abc import Callable, Collection, Sequence
 from fractions import Fraction
 from itertools import product
 from typing import Any, Protocol
@@ -103,9 +103,11 @@ class Evaluator:
             jets[k] = self.term(k, jets, box, gradient)
         return jets
 
-    def jumps(self, below: Iterable[int]) -> bool:
+    def jumps(self, below: Collection[int]) -> bool:
         """Whether among these terms, in the last run, a corner met both branches or a reading several cells."""
-        return any(len(self.sides.get(k, ())) > 1 or several(self.branch.get(k, ())) for k in below)
+        return any(len(x) > 1 and k in below for k, x in self.sides.items()) or any(
+            several(x) and k in below for k, x in self.branch.items()
+        )
 
     def second(self) -> bool:
         """Whether derivatives of a derivative are carried."""

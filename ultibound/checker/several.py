@@ -2,12 +2,13 @@
 
 from __future__ import annotations
 
-from collections.abc import Iterable
+from collections.abc import Iterable, Iterator
 from dataclasses import replace
 from fractions import Fraction
 from typing import Any
 
 from .derive import Derivation, Domain
+from .flows import Flows
 from .grammar import constant
 from .jacobians import Table, middle_and_half
 from .matrices import Leaf, Matrix, Metric, comparison, entries, metric, norm_at_most
@@ -16,6 +17,7 @@ from .periodic import periodic
 from .theorems import Line, Quantities, magnitude, parted, require
 
 OWN = ("metric", "matrix", "entries", "stretch", "componentwise", "invariant-rows", "periodic")
+KEPT = 5000  # leaves in memory
 
 
 def stated(d: Derivation, proves: str, used: list[Line], witness: dict[str, Any]) -> Metric:
@@ -145,19 +147,39 @@ def bounded(
     table = Table(d, proves, domain, witness["bits"], flows)
     if rule == "matrix":
         count = 0
-        for leaf in table.leaves(witness["trees"]):
+        for leaf in gone_through(d, table, proves, flows, witness):
             count += 1
             if not norm_at_most(norm, leaf, claimed["norm"]):
                 raise Rejected(f"{proves}: a leaf is not shown to stay within the norm")
         return domain, count, None
     basis = based(d, witness)
-    most, count = largest(table.leaves(witness["trees"]), basis, proves)
+    most, count = largest(gone_through(d, table, proves, flows, witness), basis, proves)
     for key, x in keyed(most).items():
         if not claimed.get(key, Fraction(-1)) >= x:
             raise Rejected(f"{proves}: entry {key} is less than what the leaves show")
     if set(claimed) != set(keyed(most)):
         raise Rejected(f"{proves}: one conclusion an entry")
     return domain, count, basis
+
+
+def gone_through(
+    d: Derivation, table: Table, proves: str, flows: Flows | None, witness: dict[str, Any]
+) -> Iterator[Leaf]:
+    """The leaves of a tree over a set, evaluated once for all lines that follow about the same ones."""
+    key = table.domain, witness["bits"], witness["trees"]
+    known = d.leaves.get(proves)
+    if known is not None and known[0] == key and known[1] is flows:
+        yield from known[2]
+        return
+    found: list[Leaf] = []
+    count = 0
+    for leaf in table.leaves(witness["trees"]):
+        count += 1
+        if count <= KEPT:
+            found.append(leaf)
+        yield leaf
+    if count <= KEPT:
+        d.leaves[proves] = key, flows, found
 
 
 def based(d: Derivation, witness: dict[str, Any]) -> tuple[Matrix, Matrix]:

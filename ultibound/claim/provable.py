@@ -60,6 +60,10 @@ def not_yet(claim: Claim) -> str | None:
             return f"metric.weights.{name}: has to be a rational number above 0, to be stated exactly"
     if not several and any(set(constant(w, claim.values)) != {Fraction(1)} for w in claim.weights.values()):
         return "metric.weights: only the weight 1 can be used with a single state yet; remove the table"
+    for s, w in claim.weights.items() if several else ():
+        low, high = constant(w, claim.values)
+        if low != high:
+            return f"metric.weights.{s}: a weight is used exactly; state a rational number"
     for number, r in enumerate(claim.requirements, 1):
         if several and r.during:
             return f"require[{number}]: a push during the stance can be proved for a single state only, yet"

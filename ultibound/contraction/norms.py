@@ -66,7 +66,7 @@ class Affine:
     centre: Floats
     slopes: Floats
     rest: Floats
-    score: Floats  # (boxes, variables): what bisecting a variable may gain
+    lost: Floats  # (boxes, variables, n, c): what a variable adds to the rest; bisecting it may gain that
     jumps: Any  # (boxes,): whether a derivative may jump inside
 
 
@@ -87,7 +87,7 @@ class Matrices:
         shape = boxes, len(self.rows), len(self.rows[0])
         middle, half = (low + high) / 2, (high - low) / 2
         centre, rest = np.zeros(shape), np.zeros(shape)
-        slopes, score = np.zeros((boxes, count, *shape[1:])), np.zeros((boxes, count))
+        slopes, lost = np.zeros((boxes, count, *shape[1:])), np.zeros((boxes, count, *shape[1:]))
         jumps = np.zeros(boxes, bool)
         with np.errstate(invalid="ignore", over="ignore"):
             for i, row in enumerate(self.rows):
@@ -108,8 +108,8 @@ class Matrices:
                     centre[:, i, j] = np.where(direct, (run.low + run.high) / 2, (here.low + here.high) / 2)
                     rest[:, i, j] = np.where(direct, (run.high - run.low) / 2, total)
                     slopes[:, e.columns, i, j] = np.where(direct[:, None], 0.0, linear)
-                    score[:, e.columns] += np.where(direct[:, None], whole, left)
-        return Affine(centre, slopes, rest, score, jumps)
+                    lost[:, e.columns, i, j] = np.where(direct[:, None], whole, left)
+        return Affine(centre, slopes, rest, lost, jumps)
 
     def at(self, x: Floats) -> Floats:
         """The matrices at points (points, variables), as (points, n, c)."""
@@ -122,10 +122,11 @@ class Matrices:
 
 def over_boxes(norm: Norm, a: Affine) -> tuple[Floats, Floats]:
     """Upper estimates of the norm over boxes, and the signs (boxes, variables) of the corner it is largest at."""
-    boxes, count = a.score.shape
+    boxes, count = a.lost.shape[:2]
     right = norm.inverse if norm.inverse is not None else np.eye(a.centre.shape[2])
-    centre, slopes = norm.rows @ a.centre @ right, norm.rows @ a.slopes @ right
-    rest = np.abs(norm.rows) @ a.rest @ np.abs(right)
+    with np.errstate(invalid="ignore", over="ignore"):
+        centre, slopes = norm.rows @ a.centre @ right, norm.rows @ a.slopes @ right
+        rest = np.abs(norm.rows) @ a.rest @ np.abs(right)
     size = np.abs(slopes).sum(axis=(2, 3))
     order = np.argsort(-size.max(axis=0, initial=0.0), kind="stable")
     moving = [int(k) for k in order if size[:, k].max(initial=0.0) > 0]
@@ -153,6 +154,15 @@ def over_boxes(norm: Norm, a: Affine) -> tuple[Floats, Floats]:
     return np.where(np.isfinite(found), found, np.inf), where
 
 
+def worth(norm: Norm, a: Affine) -> Floats:
+    """What bisecting each variable may gain, (boxes, variables), seen in the norm."""
+    right = np.abs(norm.inverse) if norm.inverse is not None else np.eye(a.centre.shape[2])
+    with np.errstate(invalid="ignore"):
+        seen = np.abs(norm.rows) @ a.lost @ right
+    found: Floats = seen.sum(axis=(2, 3)) if norm.round else seen.sum(axis=3).max(axis=2)
+    return np.where(np.isnan(found), np.inf, found)
+
+
 def _rows(corners: Floats, rest: Floats) -> Floats:
     """Largest row sums (boxes, corners) of magnitudes, the rest added."""
     found: Floats = (np.abs(corners).sum(axis=3) + rest.sum(axis=2)[:, None]).max(axis=2)
@@ -168,7 +178,8 @@ def _length(m: Floats) -> Floats:
 
 def size(norm: Norm, m: Floats) -> Floats:
     """The norm of matrices (points, n, c)."""
-    b = norm.rows @ m @ (norm.inverse if norm.inverse is not None else np.eye(m.shape[2]))
+    with np.errstate(invalid="ignore", over="ignore"):
+        b = norm.rows @ m @ (norm.inverse if norm.inverse is not None else np.eye(m.shape[2]))
     return _length(b) if norm.round else np.abs(b).sum(axis=2).max(axis=1)
 
 
@@ -182,8 +193,11 @@ def direction(norm: Norm, m: Floats) -> tuple[float, ...]:
     return tuple(float(x) for x in norm.inverse @ y)
 
 
-def stretched(matrices: Matrices, norm: Norm, effort: Effort) -> Stretched:
-    """Witnesses for the supremum of the norm, within the gap of a value taken or as close as the limits allow."""
+def stretched(matrices: Matrices, norm: Norm, effort: Effort, enough: float = -np.inf) -> Stretched:
+    """Witnesses for the supremum of the norm, within the gap of a value taken or as close as the limits allow.
+
+    `enough` ends the search earlier: where the supremum is surely below it, or above it.
+    """
     tops = list(product(*(v.cells for v in matrices.variables)))
     shape = len(tops), len(matrices.variables)
     low = np.array([[to_float(c[0]) for c in top] for top in tops]).reshape(shape)
@@ -200,7 +214,7 @@ def stretched(matrices: Matrices, norm: Norm, effort: Effort) -> Stretched:
             part = slice(first, first + BATCH)
             a = matrices.affine(low[part], high[part])
             found, where = over_boxes(norm, a)
-            upper, score = np.concatenate([upper, found]), np.concatenate([score, a.score])
+            upper, score = np.concatenate([upper, found]), np.concatenate([score, worth(norm, a)])
             jumps = np.concatenate([jumps, a.jumps])
             middle, half = (low[part] + high[part]) / 2, (high[part] - low[part]) / 2
             points = np.where(fixed, middle, np.clip(middle + where * half, inside[:, 0], inside[:, 1]))
@@ -213,10 +227,13 @@ def stretched(matrices: Matrices, norm: Norm, effort: Effort) -> Stretched:
         done = len(low)
         leaf = np.asarray(np.array(split, dtype=np.int64) < 0)
         ceiling = max(best, 0.0) + max(SHARE * effort.gap * max(best, 0.0), effort.floor, 1e-6 * effort.gap)
-        open_ = np.flatnonzero(leaf & (upper > ceiling))
+        open_ = np.flatnonzero(leaf & (upper > max(ceiling, enough)))
         leaves = int(leaf.sum())
         effort.watch(leaves, float(upper[leaf].max()))
         if not len(open_):
+            break
+        if -np.inf < enough < inner:
+            stopped = "beyond"
             break
         if leaves >= look:
             worst = open_[np.argmax(upper[open_])]

@@ -35,6 +35,7 @@ if TYPE_CHECKING:
 
 SAMPLES = 300
 FEW = 3000  # leaves of a search that only compares metrics
+COST, LEAST = 12, 300  # an entry of a leaf counts as so many cells, exact arithmetic being what it is; leaves allowed
 SPARE = 1 - 1e-9
 ORBIT_BITS = 128
 MOST_BASES = 2  # for comparisons, beside the states and the metric itself
@@ -51,6 +52,7 @@ class SeveralAttempt(Attempt):
     chosen: Proposal
     norm: Metric
     domain: Domain
+    needed = 0  # leaves that showed the ball to be kept
 
     def _prove(self) -> None:
         """Lines for the set and its metric, gain and residual, bounds by state, and the requirements."""
@@ -163,9 +165,8 @@ class SeveralAttempt(Attempt):
         slopes, misses = self._matrices("slopes", domain), self._matrices("misses", domain)
         jacobians, missed = (self._sampled(m, rng) for m in (slopes, misses))
         room = np.array([to_float(x) for x in self._rooms()])
-        self.others = []
-        if not (room > 0).all():
-            return []
+        # a target on the edge: any scale will do
+        room = np.where(room > 0, room, max(float(room.max()), 0.0) or 1.0)
         self.others, weights = proposals(jacobians, missed[:, :, 0], room), self._weights()
         if weights is None and self.claim.metric == "auto":
             return self.others
@@ -223,7 +224,14 @@ class SeveralAttempt(Attempt):
         return moved
 
     def _searched(
-        self, proves: str, domain: Domain, norm: Metric, gap: float, cells: int, later: float = 0.0
+        self,
+        proves: str,
+        domain: Domain,
+        norm: Metric,
+        gap: float,
+        cells: int,
+        enough: float = -np.inf,
+        later: float = 0.0,
     ) -> Stretched:
         def watch(leaves: int, high: float) -> None:
             self.watch(f"{proves} of {len(self.obligations.states)} states", leaves, high)
@@ -232,21 +240,24 @@ class SeveralAttempt(Attempt):
         form = Norm(floats(norm.rows), floats(norm.inverse) if proves == "slopes" else None, norm.kind == "ellipsoid")
         effort = Effort(gap, cells, self.ranges.until - self.ranges.spent, watch, later=later)
         try:
-            return stretched(matrices, form, effort)
+            return stretched(matrices, form, effort, enough)
         except KeyboardInterrupt:
             self.ranges.interrupt()
-            return stretched(matrices, form, replace(effort, until=0.0))
+            return stretched(matrices, form, replace(effort, until=0.0), enough)
 
     def _size(self, p: Proposal, ball: Domain) -> float:
         """The largest share of its room that a state's bound takes; inf where the ball is not kept (estimates)."""
         norm = metric(p.kind, p.rows, p.inverse, len(self.obligations.states))
-        k = self._searched("slopes", ball, norm, COARSE, FEW).upper
-        if not k < 1:
-            return np.inf
         miss = self._searched("misses", ball, norm, COARSE, FEW).upper + self._shift(norm)
         radius = to_float(ball.radius)
-        if not k * radius + miss <= radius * SPARE:
+        most = SPARE - miss / radius if radius > 0 else 0.0
+        if not (most > 0 and miss < np.inf):
             return np.inf
+        found = self._searched("slopes", ball, norm, COARSE, FEW, most)
+        k = found.upper
+        if not k <= most:
+            return np.inf
+        self.needed = found.leaves
         shares = [to_float(norm.support(i)) / max(to_float(x), 1e-300) for i, x in enumerate(self._rooms())]
         return miss / (1 - k) * max(shares)
 
@@ -265,10 +276,12 @@ class SeveralAttempt(Attempt):
     def _norm(self, proves: str, on: int) -> tuple[int, tuple[str, ...], int] | None:
         """The line of a norm over the set, with a stretch that attains nearly as much; its trees and bits."""
         w, share = self.writer, 1.0
+        cells = self.claim.cells // (COST * len(self.obligations.states) ** 2)
+        cells = min(self.claim.cells, max(LEAST, self.needed, cells))
         bits = 0 if w.exact(proves, on) else BITS
         later = TWICE * w.matrix_seconds(proves, bits, on)
         for _ in range(4):
-            found = self._searched(proves, self.domain, self.norm, self.gap * share, self.claim.cells, later)
+            found = self._searched(proves, self.domain, self.norm, self.gap * share, cells, later=later)
             began = time.monotonic()
             try:
                 leaves = w.leaves(proves, found.trees, bits, on)
