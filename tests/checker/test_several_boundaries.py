@@ -986,6 +986,49 @@ def rounding_of_stances() -> None:
     reject("a stance of which nothing is shown, and stretches", but(without(entries, 10, 11, 12, 13, 14, 15, 16, 19, 20), "results set", None, "results routes", {}, "results requirements 0 verdict", "undecided"), "proof", "serves no later line")
 
 
+def beyond_the_ball() -> None:
+    """Suprema over the outer radius, points within the inner one."""
+    asked = [("value(y) <= 3/4", "undecided"), ("value(y) >= 0", "refuted")]
+    d = Lines(claim("x/2", "y/2", ends=('["-3/4", "3/4"]', "[-1, 1]"), asked=[that for that, _ in asked]))
+    d.metric("box", ONE, ONE)
+    d.range("target[x]", "0", "0")
+    d.range("target[y]", "0", "0")
+    d.point("target[x]", {}, "0")
+    d.theorem("largest-ball", "ball", [1, 2, 3, 4], radius="1/2", outer="3/4")
+    d.range("require[1]", "-3/4", "3/4", [5])
+    d.range("require[2]", "-3/4", "3/4", [5])
+    d.point("require[2]", {"y": "-1/2"}, "-1/2", uses=[5])
+    entries = d.found(None, asked, shown("box", ONE))
+    judged("beyond the ball", entries)
+    reject("beyond the ball, less", but(entries, "proof 5 concludes upper", hair("3/4", -1)), "proof line 6", WIDER)
+    reject("beyond the ball, a point", but(entries, "proof 7 witness at y", hair("-1/2", -1)), "proof line 8", "at.y: outside the range")
+
+
+def rounded_stretches() -> None:
+    """With 24 bits 1/3 is known to a unit: half of it is taken off, whatever the sign of the direction."""
+    unit_ = 1 << 24
+    d = Lines(claim("x/3", "y/3 - x/3"))
+    d.metric("box", ONE, ONE)
+    d.range("target[x]", "0", "0")
+    d.range("target[y]", "0", "0")
+    d.theorem("smaller-ball", "ball", [1, 2, 3], radius="1")
+    d.range("image[x]", "-1/3", "1/3")
+    d.range("image[y]", "-2/3", "2/3")
+    d.theorem("invariant-region", "invariant", [1, 2, 3, 5, 6])
+    d.matrix("slopes", "2/3", [7])
+    d.matrix("misses", "0", [7])
+    d.theorem("slope", "slope", [8, 9], gain="2/3", residual="0")
+    d.theorem("ultimate-bound", "bound[slope]", [7, 10], bound="0")
+    d.stretch("slopes", {"x": "0", "y": "0"} , ["1", "-1"], str(Q(unit_ // 3 * 2, unit_)), [7], bits=24)
+    entries = d.found("region", [("settles", "proved")], shown("box", ONE))
+    for direction in (["1", "-1"], ["-1", "1"], ["-3", "3"]):
+        changed = but(entries, "proof 11 witness direction", direction)
+        accept(f"rounded stretch {direction}", changed)
+        reject(f"rounded stretch {direction}, more", but(changed, "proof 11 concludes lower", hair(str(Q(unit_ // 3 * 2, unit_)), 1)), "proof line 12", "slopes: the direction")
+
+
+beyond_the_ball()
+rounded_stretches()
 smaller_balls()
 other_sets()
 refused_rules()
