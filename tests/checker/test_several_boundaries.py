@@ -13,7 +13,19 @@ from typing import Any
 import pytest
 
 import ultibound.checker
-from tests.checker.test_boundaries import BASE, GONE, STEP, Case, Draft, Entries, Question, but, derivation, refuses, sealed
+from tests.checker.test_boundaries import (
+    BASE,
+    GONE,
+    STEP,
+    Case,
+    Draft,
+    Entries,
+    Question,
+    but,
+    derivation,
+    refuses,
+    sealed,
+)
 from tests.checker.test_stance_boundaries import STILL, limited
 
 CASES: dict[str, Question] = {}
@@ -288,20 +300,16 @@ BALL = ("x/2 + 3*y/8 + p", "x/2")
 ENDS = ("[-1, 1]", "[-2, 2]")
 
 
-def ball(asked: Sequence[str] = ("settles",), rule: str = "largest-ball", invariant: str = "invariant-ball", radius: str = "2", bound: str = "1",
-         b: tuple[str, str] = ("2/5", "1/5"), entries: bool = True, escapes: bool = True, **other: str) -> Lines:
+def ball(asked: Sequence[str] = ("settles",), invariant: str = "invariant-ball") -> Lines:
     """Lines: 1 metric, 2 3 targets, 4 5 points, 6 ball, 7 escape, 8 9 matrices, 10 pair, 11 12 entries in the slanted basis,
     13 invariant, 14 bound, 15 16 entries, 17 comparison, 18 19 stretches."""
-    d = Lines(claim(*BALL, ends=ENDS, asked=asked, **other))
+    d = Lines(claim(*BALL, ends=ENDS, asked=asked))
     d.metric("polytope", SLANTED, UPRIGHT)
     d.range("target[x]", "0", "0")
     d.range("target[y]", "0", "0")
     d.point("target[x]", {}, "0")
     d.point("target[y]", {}, "0")
-    if rule == "largest-ball":
-        d.theorem("largest-ball", "ball", [1, 2, 3, 4, 5], radius=radius, outer="2")
-    else:
-        d.theorem("smaller-ball", "ball", [1, 2, 3], radius=radius)
+    d.theorem("largest-ball", "ball", [1, 2, 3, 4, 5], radius="2", outer="2")
     d.point("image[x]", {"x": "1", "y": "2", "p": "0"}, "5/4")
     d.matrix("slopes", "3/4", [6])
     d.matrix("misses", "1/4", [6])
@@ -309,10 +317,10 @@ def ball(asked: Sequence[str] = ("settles",), rule: str = "largest-ball", invari
     d.table("slopes", ["3/4", "0", "1/2", "1/4"], [6], SLANTED, UPRIGHT)
     d.table("misses", ["1/4", "1/4"], [6], SLANTED, UPRIGHT)
     d.theorem(invariant, "invariant", [6, 10] if invariant == "invariant-ball" else [6, 11, 12])
-    d.theorem("ultimate-bound", "bound[slope]", [13, 10], bound=bound)
+    d.theorem("ultimate-bound", "bound[slope]", [13, 10], bound="1")
     d.table("slopes", ["1/2", "3/8", "1/2", "0"], [13])
     d.table("misses", ["1/8", "0"], [13])
-    d.compared([13, 15, 16], ["1", "1"], b, *b)
+    d.compared([13, 15, 16], ["1", "1"], ["2/5", "1/5"], "2/5", "1/5")
     d.stretch("slopes", {"x": "1/2", "y": "1", "p": "0"}, ["1", "0"], "3/4", [6])
     d.stretch("misses", {"p": "-1/8"}, ["-2"], "1/4", [6])
     return d
@@ -395,13 +403,13 @@ on_ball()
 
 # a ball about a moving target: c + 1/8 and 2c (or turned round), c in [-1/4, 1/4] moving by 1/64; the same Jacobian, a miss of 1/32
 
-def led(turned: bool = False, asked: Sequence[str] = ("settles",), **other: str) -> Lines:
+def led(turned: bool = False) -> Lines:
     """Lines: 1 metric, 2 3 targets, 4 point, 5 ball, 6 escape, 7 8 matrices, 9 10 target slopes, 11 pair, 12 13 slanted entries,
     14 invariant, 15 bound, 16 17 entries, 18 comparison, 19 comparison in the slanted basis, 20 21 stretches."""
     way = "-" if turned else ""
     at = ("-(c + 1/8)", "-2*c") if turned else ("c + 1/8", "2*c")
     step = (f"target(x) + (x - target(x))/2 + 3*(y - target(y))/8 + {way}p", "target(y) + (x - target(x))/2")
-    d = Lines(claim(*step, ends=ENDS, uncertain='p = ["-1/32", "1/32"]\nc = { range = ["-1/4", "1/4"], held = true, change = "1/64" }', target=at, asked=asked, **other))
+    d = Lines(claim(*step, ends=ENDS, uncertain='p = ["-1/32", "1/32"]\nc = { range = ["-1/4", "1/4"], held = true, change = "1/64" }', target=at))
 
     def of(low: str, high: str) -> tuple[str, str]:
         return (str(-Q(high)), str(-Q(low))) if turned else (low, high)
@@ -642,8 +650,6 @@ def beyond_the_edge() -> None:
     for s, n in (("x", 2), ("y", 3)):
         for key, value, by in (("lower", "-1", -1), ("upper", "1", 1)):
             wide = but(one, f"proof {n - 1} concludes {key}", value)
-            for line in (wide["proof"][5],):
-                line["uses"] = [1, 10 if n == 2 else 2, 10 if n == 3 else 3, 4]
             order = [*wide["proof"][:5], one["proof"][n - 1], *wide["proof"][5:]]
             moved_up = but(wide, "proof", order)
             moved_up["proof"][6]["uses"] = [1, 6 if n == 2 else 2, 6 if n == 3 else 3, 4]
@@ -780,24 +786,23 @@ def other_sets() -> None:
     ball_ = [{"rule": "entries", "proves": of, "uses": [5], "witness": {**two[12]["witness"], "rows": WEIGHTS, "inverse": UNWEIGHTED}, "concludes": values}
              for of, values in (("slopes", {"1,1": "1/2", "1,2": "1/8", "2,1": "1/2", "2,2": "1/4"}), ("misses", {"1,1": "1/8", "2,1": "1/8"}))]
     rows = {"rule": "invariant-rows", "proves": "invariant", "uses": [5, 19, 20], "witness": {}, "concludes": {}}
-    compared = {**two[14], "uses": [21, 19, 20], "witness": {"p": ["1", "1"], "b": ["1/4", "1/2"]}, "concludes": {"x": "1/2", "y": "1/4"}}
-    compared["witness"]["b"] = ["1/2", "1/2"]
+    compared = {**two[14], "uses": [21, 19, 20], "witness": {"p": ["1", "1"], "b": ["1/2", "1/2"]}, "concludes": {"x": "1/2", "y": "1/4"}}
     reject("a comparison over another set", without(but(PLAIN, "proof", [*two, *ball_, rows, compared]), 13, 14, 15), "results", "the comparison refers to another set")
     accept("a comparison over the ball", but(without(but(PLAIN, "proof", [*two, *ball_, rows, {**compared, "concludes": {"x": "7/20", "y": "1/5"}, "witness": {"p": ["1", "1"], "b": ["7/20", "2/5"]}}]), 8, 9, 10, 11, 12, 13, 14, 15, 6, 7, 16, 17, 18),
                                             "results set kind", "smaller ball", "results requirements 0 verdict", "undecided"))
     reject("an invariant ball by a pair of the region", but(PLAIN, "proof 17", {"rule": "invariant-ball", "proves": "invariant", "uses": [5, 11], "witness": {}, "concludes": {}}), "proof line 18", "the gain refers to another set")
 
 
-def smaller(radius: str, top: str = "", asked: Sequence[str] = ("settles",), stated: bool = False, norm: str = "3/4") -> Lines:
+def smaller(radius: str, top: str = "", asked: Sequence[str] = ("settles",), stated: bool = False) -> Lines:
     """A smaller ball of the first map: 1 metric, 2 3 targets, 4 ball, 5 6 matrices, 7 pair, 8 invariant, 9 bound, 10 11 entries, 12 comparison, 13 14 stretches."""
     d = Lines(claim(*PAIR, uncertain=NOISE, asked=asked, rest=STATED if stated else "", top=top))
     d.metric("box", WEIGHTS, UNWEIGHTED)
     d.range("target[x]", "0", "0")
     d.range("target[y]", "0", "0")
     d.theorem("smaller-ball", "ball", [1, 2, 3], radius=radius)
-    d.matrix("slopes", norm, [4])
+    d.matrix("slopes", "3/4", [4])
     d.matrix("misses", "1/8", [4])
-    d.theorem("slope", "slope", [5, 6], gain=norm, residual="1/8")
+    d.theorem("slope", "slope", [5, 6], gain="3/4", residual="1/8")
     d.theorem("invariant-ball", "invariant", [4, 7])
     d.theorem("ultimate-bound", "bound[slope]", [8, 7], bound="1/2")
     d.table("slopes", ["1/2", "1/4", "1/4", "1/4"], [8])
