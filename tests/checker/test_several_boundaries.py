@@ -13,8 +13,20 @@ from typing import Any
 import pytest
 
 import ultibound.checker
-from tests.checker.test_boundaries import GONE, STEP, Case, Draft, Entries, Question, but, derivation, refuses, sealed
-from tests.checker.test_stance_boundaries import limited
+from tests.checker.test_boundaries import (
+    BASE,
+    GONE,
+    STEP,
+    Case,
+    Draft,
+    Entries,
+    Question,
+    but,
+    derivation,
+    refuses,
+    sealed,
+)
+from tests.checker.test_stance_boundaries import STILL, limited
 
 CASES: dict[str, Question] = {}
 
@@ -164,8 +176,8 @@ def in_region(d: Lines, kind: str = "box") -> Lines:
     d.table("slopes", ["1/2", "1/4", "1/4", "1/4"], of(8))
     d.table("misses", ["1/8", "1/16"], of(8))
     d.compared(of(8, 13, 14), ["2", "1"], ["7/20", "1/5"], "7/20", "1/5")
-    d.stretch("slopes", {"x": "1", "y": "-1", "p": "1/8", "q": "0"}, ["1", "1/2"], "3/4", of(8))
-    d.stretch("misses", {"p": "1/8", "q": "0"}, ["1"], "1/8", of(8))
+    d.stretch("slopes", {"x": "1", "y": "-1", "p": "1/16", "q": "0"}, ["1", "1/2"], "3/4", of(8))
+    d.stretch("misses", {"p": "1/16", "q": "1/16"} if d.prefix else {"p": "1/8", "q": "0"}, ["1"], "1/8", of(8))
     d.point("target[y]", {}, "0")
     return d
 
@@ -288,20 +300,16 @@ BALL = ("x/2 + 3*y/8 + p", "x/2")
 ENDS = ("[-1, 1]", "[-2, 2]")
 
 
-def ball(asked: Sequence[str] = ("settles",), rule: str = "largest-ball", invariant: str = "invariant-ball", radius: str = "2", bound: str = "1",
-         b: tuple[str, str] = ("2/5", "1/5"), entries: bool = True, escapes: bool = True, **other: str) -> Lines:
+def ball(asked: Sequence[str] = ("settles",), invariant: str = "invariant-ball") -> Lines:
     """Lines: 1 metric, 2 3 targets, 4 5 points, 6 ball, 7 escape, 8 9 matrices, 10 pair, 11 12 entries in the slanted basis,
     13 invariant, 14 bound, 15 16 entries, 17 comparison, 18 19 stretches."""
-    d = Lines(claim(*BALL, ends=ENDS, asked=asked, **other))
+    d = Lines(claim(*BALL, ends=ENDS, asked=asked))
     d.metric("polytope", SLANTED, UPRIGHT)
     d.range("target[x]", "0", "0")
     d.range("target[y]", "0", "0")
     d.point("target[x]", {}, "0")
     d.point("target[y]", {}, "0")
-    if rule == "largest-ball":
-        d.theorem("largest-ball", "ball", [1, 2, 3, 4, 5], radius=radius, outer="2")
-    else:
-        d.theorem("smaller-ball", "ball", [1, 2, 3], radius=radius)
+    d.theorem("largest-ball", "ball", [1, 2, 3, 4, 5], radius="2", outer="2")
     d.point("image[x]", {"x": "1", "y": "2", "p": "0"}, "5/4")
     d.matrix("slopes", "3/4", [6])
     d.matrix("misses", "1/4", [6])
@@ -309,10 +317,10 @@ def ball(asked: Sequence[str] = ("settles",), rule: str = "largest-ball", invari
     d.table("slopes", ["3/4", "0", "1/2", "1/4"], [6], SLANTED, UPRIGHT)
     d.table("misses", ["1/4", "1/4"], [6], SLANTED, UPRIGHT)
     d.theorem(invariant, "invariant", [6, 10] if invariant == "invariant-ball" else [6, 11, 12])
-    d.theorem("ultimate-bound", "bound[slope]", [13, 10], bound=bound)
+    d.theorem("ultimate-bound", "bound[slope]", [13, 10], bound="1")
     d.table("slopes", ["1/2", "3/8", "1/2", "0"], [13])
     d.table("misses", ["1/8", "0"], [13])
-    d.compared([13, 15, 16], ["1", "1"], b, *b)
+    d.compared([13, 15, 16], ["1", "1"], ["2/5", "1/5"], "2/5", "1/5")
     d.stretch("slopes", {"x": "1/2", "y": "1", "p": "0"}, ["1", "0"], "3/4", [6])
     d.stretch("misses", {"p": "-1/8"}, ["-2"], "1/4", [6])
     return d
@@ -395,13 +403,13 @@ on_ball()
 
 # a ball about a moving target: c + 1/8 and 2c (or turned round), c in [-1/4, 1/4] moving by 1/64; the same Jacobian, a miss of 1/32
 
-def led(turned: bool = False, asked: Sequence[str] = ("settles",), **other: str) -> Lines:
+def led(turned: bool = False) -> Lines:
     """Lines: 1 metric, 2 3 targets, 4 point, 5 ball, 6 escape, 7 8 matrices, 9 10 target slopes, 11 pair, 12 13 slanted entries,
     14 invariant, 15 bound, 16 17 entries, 18 comparison, 19 comparison in the slanted basis, 20 21 stretches."""
     way = "-" if turned else ""
     at = ("-(c + 1/8)", "-2*c") if turned else ("c + 1/8", "2*c")
     step = (f"target(x) + (x - target(x))/2 + 3*(y - target(y))/8 + {way}p", "target(y) + (x - target(x))/2")
-    d = Lines(claim(*step, ends=ENDS, uncertain='p = ["-1/32", "1/32"]\nc = { range = ["-1/4", "1/4"], held = true, change = "1/64" }', target=at, asked=asked, **other))
+    d = Lines(claim(*step, ends=ENDS, uncertain='p = ["-1/32", "1/32"]\nc = { range = ["-1/4", "1/4"], held = true, change = "1/64" }', target=at))
 
     def of(low: str, high: str) -> tuple[str, str]:
         return (str(-Q(high)), str(-Q(low))) if turned else (low, high)
@@ -642,8 +650,6 @@ def beyond_the_edge() -> None:
     for s, n in (("x", 2), ("y", 3)):
         for key, value, by in (("lower", "-1", -1), ("upper", "1", 1)):
             wide = but(one, f"proof {n - 1} concludes {key}", value)
-            for line in (wide["proof"][5],):
-                line["uses"] = [1, 10 if n == 2 else 2, 10 if n == 3 else 3, 4]
             order = [*wide["proof"][:5], one["proof"][n - 1], *wide["proof"][5:]]
             moved_up = but(wide, "proof", order)
             moved_up["proof"][6]["uses"] = [1, 6 if n == 2 else 2, 6 if n == 3 else 3, 4]
@@ -766,6 +772,295 @@ def cuts_of_all(checker: Any) -> None:
     assert checker.jacobians.together([meaning(0, "", [a], True), meaning(0, "", [a], True)]) == [a]
 
 
+# other sets, other rules
+
+def other_sets() -> None:
+    gain, comparison = "gain and residual of slope refer to another set", "entries of another set"
+    for uses, n, reason in (({9: [5]}, 11, "the residual refers to another set"), ({10: [5]}, 11, "the residual refers to another set"), ({9: [5], 10: [5]}, 12, "the gain refers to another set"), ({13: [5]}, 15, comparison), ({14: [5]}, 15, comparison), ({13: [5], 14: [5]}, 15, comparison)):
+        reject(f"of the ball: {sorted(uses)}", but(PLAIN, *[x for k, to in uses.items() for x in (f"proof {k - 1} uses", to)]), f"proof line {n}", reason)
+    reject("a gain over another set", without(but(PLAIN, "proof 8 uses", [5], "proof 9 uses", [5]), 12), "results", gain)
+    for n in (16, 17):
+        reject(f"a stretch over another set, {n}", but(PLAIN, f"proof {n - 1} uses", [5], "proof 15 witness at y", "0"), "proof", f"line {n} serves no later line and no result")
+    # a comparison over the ball that is mapped into itself, where the region is the set
+    two = PLAIN["proof"]
+    ball_ = [{"rule": "entries", "proves": of, "uses": [5], "witness": {**two[12]["witness"], "rows": WEIGHTS, "inverse": UNWEIGHTED}, "concludes": values}
+             for of, values in (("slopes", {"1,1": "1/2", "1,2": "1/8", "2,1": "1/2", "2,2": "1/4"}), ("misses", {"1,1": "1/8", "2,1": "1/8"}))]
+    rows = {"rule": "invariant-rows", "proves": "invariant", "uses": [5, 19, 20], "witness": {}, "concludes": {}}
+    compared = {**two[14], "uses": [21, 19, 20], "witness": {"p": ["1", "1"], "b": ["1/2", "1/2"]}, "concludes": {"x": "1/2", "y": "1/4"}}
+    reject("a comparison over another set", without(but(PLAIN, "proof", [*two, *ball_, rows, compared]), 13, 14, 15), "results", "the comparison refers to another set")
+    accept("a comparison over the ball", but(without(but(PLAIN, "proof", [*two, *ball_, rows, {**compared, "concludes": {"x": "7/20", "y": "1/5"}, "witness": {"p": ["1", "1"], "b": ["7/20", "2/5"]}}]), 8, 9, 10, 11, 12, 13, 14, 15, 6, 7, 16, 17, 18),
+                                            "results set kind", "smaller ball", "results requirements 0 verdict", "undecided"))
+    reject("an invariant ball by a pair of the region", but(PLAIN, "proof 17", {"rule": "invariant-ball", "proves": "invariant", "uses": [5, 11], "witness": {}, "concludes": {}}), "proof line 18", "the gain refers to another set")
+
+
+def smaller(radius: str, top: str = "", asked: Sequence[str] = ("settles",), stated: bool = False) -> Lines:
+    """A smaller ball of the first map: 1 metric, 2 3 targets, 4 ball, 5 6 matrices, 7 pair, 8 invariant, 9 bound, 10 11 entries, 12 comparison, 13 14 stretches."""
+    d = Lines(claim(*PAIR, uncertain=NOISE, asked=asked, rest=STATED if stated else "", top=top))
+    d.metric("box", WEIGHTS, UNWEIGHTED)
+    d.range("target[x]", "0", "0")
+    d.range("target[y]", "0", "0")
+    d.theorem("smaller-ball", "ball", [1, 2, 3], radius=radius)
+    d.matrix("slopes", "3/4", [4])
+    d.matrix("misses", "1/8", [4])
+    d.theorem("slope", "slope", [5, 6], gain="3/4", residual="1/8")
+    d.theorem("invariant-ball", "invariant", [4, 7])
+    d.theorem("ultimate-bound", "bound[slope]", [8, 7], bound="1/2")
+    d.table("slopes", ["1/2", "1/4", "1/4", "1/4"], [8])
+    d.table("misses", ["1/8", "1/16"], [8])
+    d.compared([8, 10, 11], ["2", "1"], ["7/20", "1/5"], "7/20", "1/5")
+    d.stretch("slopes", {"x": "0", "y": "0", "p": "0", "q": "0"}, ["1", "1/2"], "3/4", [4])
+    d.stretch("misses", {"p": "1/8", "q": "0"}, ["1"], "1/8", [4])
+    return d
+
+
+def smaller_balls() -> None:
+    """Only radius and steps without `shrink`; with it all, but nothing is refuted by one ball."""
+    tables: dict[bool, list[tuple[str, str]]] = {
+        False: [("settles", "undecided"), ("gain <= 3/4", "undecided"), ("gain < 3/4", "refuted"), ("residual <= 1/8", "undecided"), ("residual < 1/8", "refuted"), ("bound <= 1/2", "undecided"), ("bound(x) <= 1", "undecided"), ("push(x) > 0.01", "undecided"),
+                ("radius(x) >= 1/2", "proved"), ("radius(x) > 1/2", "undecided"), ("radius(y) >= 1/4", "proved"), (f"radius(y) >= 1/4 + 1{STEP}", "undecided"), ("steps(x, 1/2, 1/2) <= 0", "proved"), (f"steps(x, 1/2 + 1{STEP}, 1/2) <= 9", "undecided"), ("steps(y, 1/4, 1/4) <= 0", "proved")],
+        True: [("settles", "proved"), ("gain <= 3/4", "proved"), ("gain < 3/4", "undecided"), ("residual <= 1/8", "proved"), ("residual < 1/8", "undecided"), ("bound <= 1/2", "proved"), ("bound < 1/2", "undecided"), ("bound(x) <= 7/20", "proved"), ("push(x) > 1/10", "undecided"), ("push(x) > 0.0999999", "proved"), ("push(y) >= 0.05", "undecided"), ("push(y) >= 0.04999", "proved"), ("radius(x) >= 1/2", "proved")],
+    }
+    for shrink, asked in tables.items():
+        d = smaller("1/2", "shrink = true\n" if shrink else "", [that for that, _ in asked], stated=True)
+        judged(f"smaller ball, shrink {shrink}", d.found("smaller ball", asked, BOX))
+    plain = smaller("1/2", "shrink = true\n").found("smaller ball", [("settles", "proved")], BOX)
+    accept("smaller ball that just fits", plain)
+    reject("smaller ball that just does not", but(plain, "proof 3 concludes radius", hair("1/2", -1)), "proof line 8", "gain times radius plus residual exceeds the radius")
+    exact("smaller ball", plain, {"radius": ("1/2", None), "set radius": ("1/2", None), "states x radius": ("1/2", None), "states y radius": ("1/4", None), "states x push": ("1/10", None), "states y push": ("1/20", None), "states x bound": (None, "7/20"), "gain": ("3/4", "3/4"), "requirements 0 value": (None, "2/5")})
+    # not mapped into itself: of the largest ball, gain and residual; of a smaller one nothing
+    whole = smaller("1", stated=True, asked=["gain < 3/4", "gain <= 3/4", "residual < 1/8", "settles", "radius(x) >= 0.1"])
+    asked = [("gain < 3/4", "refuted"), ("gain <= 3/4", "undecided"), ("residual < 1/8", "refuted"), ("settles", "undecided"), ("radius(x) >= 0.1", "undecided")]
+    open_ = without(whole.found(None, asked, BOX), 8, 9, 10, 11, 12)
+    largest = but(open_, "proof 3", {**open_["proof"][3], "rule": "largest-ball", "uses": [1, 2, 3, 10], "concludes": {"radius": "1", "outer": "1"}})
+    point = {"rule": "point", "proves": "target[x]", "uses": [], "witness": {"bits": 0, "at": {}}, "concludes": {"lower": "0", "upper": "0"}}
+    order = [*largest["proof"][:3], point, *largest["proof"][3:]]
+    for line in order[5:]:
+        line["uses"] = [n + (n > 3) for n in line["uses"]]
+    order[4]["uses"] = [1, 2, 3, 4]
+    largest = but(largest, "proof", order)
+    judged("largest ball, open", largest)
+    exact("largest ball, open", largest, {"gain": ("3/4", "3/4"), "residual": ("1/8", "1/8"), "routes slope gain": ("3/4", "3/4")})
+    for path, value in (("radius", {"lower": "0", "upper": None}), ("states x radius", {"lower": "0", "upper": None}), ("states x radius", {"lower": None, "upper": None}), ("states x push", {"lower": None, "upper": None}), ("states x bound", {"lower": None, "upper": "9"})):
+        reject(f"largest ball, open: {path} {value}", but(largest, f"results {path}", value), "results", f"results.{path}".replace(" ", "."))
+    reject("largest ball, open: a set", but(largest, "results set", PLAIN["results"]["set"]), "results", "results.set.kind: 'region' is claimed, None was derived")
+    reject("smaller ball, open", open_, "results", "results.routes: the keys are")
+    reject("smaller ball, open, with its lines", but(open_, "results routes", {}, "results requirements 0 verdict", "undecided", "results requirements 2 verdict", "undecided"), "proof", "serves no later line")
+    bare = without(but(open_, "results routes", {}, "results requirements 0 verdict", "undecided", "results requirements 2 verdict", "undecided"), 5, 6, 7, 8, 9)
+    accept("smaller ball, open, alone", bare)
+
+
+def refused_rules() -> None:
+    """What is known of several states only, or of a single one."""
+    proof = PLAIN["proof"]
+    for rule, witness, concludes in (("split", {}, {"gain": "1", "residual": "1"}), ("curve", {}, {"gain": "1", "residual": "1", "sharp": "1"}), ("shells", {"radii": ["1"], "slope": "0"}, {}), ("orbit", {"bits": 0, "held": {}, "start": [], "steps": []}, {"distance": "0", "highest": "0", "lowest": "0"}),
+                                     ("path", {"bits": 0, "held": {}, "start": [], "steps": []}, {"distance": "0", "from": "0", "steps": "1"})):
+        reject(f"{rule} of two states", but(PLAIN, "proof 17", {"rule": rule, "proves": rule, "uses": [8], "witness": witness, "concludes": concludes}), "proof line 18", f"{rule}: known for a single state only")
+    accept("a single state", BASE)
+    for n in (1, 9, 13, 15, 16):
+        line = {**proof[n - 1], "uses": []}
+        reject(f"{line['rule']} of a single state", but(BASE, "proof 0", line), "proof line 1", f"{line['rule']}: the claim has a single state")
+    reject("invariant-rows of a single state", but(BASE, "proof 3 rule", "invariant-rows"), "proof line 4", "invariant-rows: the claim has a single state")
+    for name in ("shell[1]", "line[x]", "growth[x]", "split-slope[x,x]", "split-residual[x]", "slope[x]", "slope[x,z]", "target[z]", "target-slope[x,c]", "support[1]", "image[z]"):
+        line = {"rule": "range", "proves": name, "uses": [8], "witness": {"bits": 0, "trees": ["d"]}, "concludes": {"lower": "0", "upper": "0"}}
+        reject(f"{name} of two states", but(PLAIN, "proof 17", line), "proof line 18", f"{name} is no obligation of this claim")
+
+
+def escapes() -> None:
+    plain = without(ball().found("ball", [("settles", "proved")], POLYTOPE), 5, 11, 12)
+    for x, y, value, good in (("1", "2", "5/4", True), ("-1", "-2", "-5/4", True), ("1", "4/3", "1", False), ("-1", "-4/3", "-1", False), ("1", hair("4/3", 8), hair("1", 3), True), ("-1", hair("-4/3", -8), hair("-1", -3), True), ("0", "0", "0", False)):
+        changed = but(plain, "proof 5 witness at", {"x": x, "y": y, "p": "0"}, "proof 5 concludes", {"lower": value, "upper": value})
+        if good:
+            accept(f"out at {x[:5]} {y[:9]}", changed)
+        else:
+            reject(f"not out at {x[:5]} {y[:9]}", changed, "results", "results.set.kind: 'ball' is claimed, 'smaller ball' was derived")
+    reject("nothing leads out", without(plain, 6), "results", "results.set.kind: 'ball' is claimed, 'smaller ball' was derived")
+    accept("one is enough to be ends of", but(plain, "proof 5 concludes lower", hair("1", 1)))
+    reject("ends that touch", but(plain, "proof 5 concludes lower", "1"), "results", "results.set.kind")
+    # points of what is asked for lie in the ball
+    for at, value, good in (({"x": "1/2", "y": "1"}, "3/2", True), ({"x": "1/2", "y": hair("1", 1)}, hair("3/2", 1), False), ({"x": hair("1/2", 1), "y": "1"}, hair("3/2", 1), False), ({"x": "0", "y": "2"}, "2", True)):
+        asked = [("value(x + y) < 3/2", "undecided")]  # another norm's ball might leave the point out
+        d = ball([asked[0][0]])
+        d.range("require[1]", "-3", "3", [13])
+        d.point("require[1]", at, value, uses=[13])
+        entries = without(d.found("ball", asked, POLYTOPE), 5, 11, 12)
+        if good:
+            judged(f"a value at {at}", entries)
+        else:
+            reject(f"a value at {at}", entries, "proof line 18", "at: not shown to be in the set")
+
+
+def of_no_use() -> None:
+    """The line that a figure rests on is the one that counts; the other one serves as the name of the set."""
+    asked = [("value(2) <= 2", "proved")]
+    d = region([asked[0][0]])
+    d.stretch("slopes", {"x": "0", "y": "0", "p": "0", "q": "0"}, ["0", "1"], "1/4", [8])
+    d.range("require[1]", "2", "2", [19])
+    two = d.found("region", asked, BOX)
+    exact("two stretches", two, {"gain": ("3/4", "3/4"), "bound": ("1/2", "1/2")})
+    # the larger one last
+    lines = [*two["proof"][:15], two["proof"][18], two["proof"][16], two["proof"][17], two["proof"][15], {**two["proof"][19], "uses": [16]}]
+    exact("two stretches, turned", but(two, "proof", lines), {"gain": ("3/4", "3/4"), "bound": ("1/2", "1/2")})
+    # of two points of a target the nearer to the edge counts, the ball rests on the other one
+    for ends, near, far in ((("-1/4", "1/2"), "1/2", "-1/4"), (("-1/2", "1/4"), "-1/2", "1/4")):
+        d = Lines(claim("(x + c)/2", "y/2", uncertain=f'c = {{ range = ["{ends[0]}", "{ends[1]}"], held = true }}', target=("c", "0")))
+        d.metric("box", ONE, ONE)
+        d.range("target[x]", *ends)
+        d.range("target[y]", "0", "0")
+        d.point("target[x]", {"c": far}, far)
+        d.point("target[x]", {"c": near}, near)
+        d.theorem("largest-ball", "ball", [1, 2, 3, 4], radius="1/2", outer="3/4")
+        d.range("image[x]", str((Q(ends[0]) - 1) / 2), str((Q(ends[1]) + 1) / 2))
+        d.range("image[y]", "-1/2", "1/2")
+        d.theorem("invariant-region", "invariant", [1, 2, 3, 7, 8])
+        entries = d.found("region", [("settles", "undecided")], {"kind": "box", "weights": {"x": "1", "y": "1"}})
+        exact(f"two points of a target in {ends}", entries, {"states x radius": ("1/2", "1/2"), "radius": ("1/2", "3/4"), "set radius": ("1/2", "3/4"), "set centre x": ends})
+    # no points: no upper end
+    lone = but(without(little("box", ONE, ONE, "1", "1"), 4, 5), "proof 3 rule", "smaller-ball", "proof 3 concludes", {"radius": "1"})
+    exact("no point of a target", lone, {"states x radius": ("1", None), "states y radius": ("1", None), "radius": ("1", None)})
+
+
+def at_the_edges() -> None:
+    """By comparison alone: a bound at the edge settles nothing and leaves no push; each state in its turn."""
+    alone = without(PLAIN, 9, 10, 11, 12, 16, 17)
+    less = hair("1", -1)
+    for x, y in (("1", "1"), ("1", less), (less, "1"), (less, less)):
+        changed = but(alone, "proof 10 witness b", [x, y], "proof 10 concludes", {"x": x, "y": y}, "results requirements 0 verdict", "proved")
+        if x == y == less:
+            accept("settled by a hair", changed)
+        else:
+            reject(f"not settled {x[:5]} {y[:5]}", changed, "results", "[1].verdict: proved is claimed, undecided was derived")
+            accept(f"undecided {x[:5]} {y[:5]}", but(changed, "results requirements 0 verdict", "undecided"))
+        for s, b in (("x", x), ("y", y)):
+            pushed = but(changed, "results requirements 0 verdict", "undecided", f"results states {s} push", {"lower": "0" if b == "1" else str(1 - Q(b)), "upper": None})
+            if b == "1":
+                reject(f"no push {s} {x[:5]} {y[:5]}", pushed, "results", f"results.states.{s}.push.lower: nothing was derived")
+            else:
+                accept(f"a push of a hair {s} {x[:5]} {y[:5]}", pushed)
+    # without a bound of one state there is none of all
+    none = without(PLAIN, 12, 13, 14, 15)
+    accept("without any bound", but(none, "results requirements 0 verdict", "undecided"))
+    reject("without any bound, settled", none, "results", "[1].verdict: proved is claimed, undecided was derived")
+    by_norm = without(PLAIN, 13, 14, 15)
+    exact("by the norm alone", by_norm, {"states x bound": (None, "1/2"), "states y bound": (None, "1/4"), "states x push": ("1/2", None), "requirements 0 value": (None, "1/2")})
+
+
+def over_ranges() -> None:
+    """A requirement over ranges of its own has lines of its own; of the others', none."""
+    asked = ['"bound(x) < 7/20"', '"bound(x) <= 7/20"\nover = { p = ["-1/16", "1/16"] }', '"bound(x) <= 9"\nover = { p = ["-1/32", "1/32"] }', '"gain < 3/4"\nover = { p = ["-1/16", "1/16"] }', '"settles"\nover = { x = ["-1", "1"] }']
+    told = [("bound(x) < 7/20", "undecided"), ("bound(x) <= 7/20", "proved"), ("bound(x) <= 9", "undecided"), ("gain < 3/4", "refuted"), ("settles", "proved")]
+    d = region(asked)
+    for n in (2, 4, 5):
+        d.prefix = f"over[{n}]:"
+        in_region(d)
+    entries = d.found("region", told, BOX)
+    judged("over", entries)
+    for n, line in enumerate(entries["proof"][18:36], 19):
+        if line["uses"]:
+            own = but(entries, f"proof {n - 1} uses", [u - 18 for u in line["uses"]])
+            reject(f"over: line {n} rests on the claim's own", own, f"proof line {n}", "uses: lines about other ranges")
+
+
+def rounding_of_stances() -> None:
+    """X and Y stand still for a second; their start is the first map."""
+    still = {"cuts": {}, "pieces": ["0", "1"], "degrees": [1, 0], "bits": 24, "cells": [["16777216 0 0 0 0 0 16777216 0"]]}
+    assert STILL["degrees"] == still["degrees"]
+    rest = STATED + f'\n[dynamics]\nduration = 1\n[dynamics.start]\nX = "{PAIR[0]}"\nY = "{PAIR[1]}"\n[dynamics.rate]\nX = "0*Y"\nY = "0*X"\n'
+    d = Lines(claim("X", "Y", uncertain=NOISE, rest=rest))
+    in_region(d)
+    proof = [{"rule": "trajectory", "proves": "flow", "uses": [], "witness": still, "concludes": {"error": "0"}}]
+    for line in d.proof:
+        on_flow = line["proves"].startswith(("image", "slopes", "misses"))
+        new = {**line, "uses": [n + 1 for n in line["uses"]] + ([1] if on_flow else [])}
+        if on_flow:
+            new["witness"] = {**line["witness"], "bits": 24}
+        proof.append(new)
+    proof.append({"rule": "range", "proves": "support[1]", "uses": [9], "witness": {"bits": 0, "trees": ["d"]}, "concludes": {"lower": "1", "upper": "1"}})
+    d.proof = proof
+    entries = d.found("region", [("settles", "proved")], BOX)
+    judged("a stance of two states", entries)
+    exact("a stance of two states", entries, {"gain": ("3/4", "3/4"), "residual": ("1/8", "1/8"), "bound": ("1/2", "1/2"), "states x bound": (None, "7/20"), "states y radius": ("1", "1")})
+    accept("a stance that may be short", but(entries, "proof 19 concludes lower", hair("0", 1)))
+    for lower in ("0", "-1"):
+        reject(f"a stance that may not last {lower}", but(entries, "proof 19 concludes lower", lower), "results", "results.set.kind: 'region' is claimed, None was derived")
+    reject("a stance that may not last", without(entries, 20), "results", "results.set.kind: 'region' is claimed, None was derived")
+    for n in (7, 8, 10, 11, 14, 15, 17, 18):
+        reject(f"a stance without its flow, {n}", but(entries, f"proof {n - 1} uses", entries["proof"][n - 1]["uses"][:-1]), f"proof line {n}", "no trajectory is proved")
+    reject("a flow first", but(entries, "proof 9 uses", [1, 9]), "proof line 10", "uses: the one line that gives the set")
+    bare = but(without(entries, 10, 11, 12, 13, 14, 15, 16, 17, 18, 19, 20), "results set", None, "results routes", {}, "results requirements 0 verdict", "undecided")
+    accept("a stance of which nothing is shown", bare)
+    reject("a stance of which nothing is shown, and stretches", but(without(entries, 10, 11, 12, 13, 14, 15, 16, 19, 20), "results set", None, "results routes", {}, "results requirements 0 verdict", "undecided"), "proof", "serves no later line")
+
+
+def beyond_the_ball() -> None:
+    """Suprema over the outer radius, points within the inner one."""
+    asked = [("value(y) <= 3/4", "undecided"), ("value(y) >= 0", "undecided")]
+    d = Lines(claim("x/2", "y/2", ends=('["-3/4", "3/4"]', "[-1, 1]"), asked=[that for that, _ in asked]))
+    d.metric("box", ONE, ONE)
+    d.range("target[x]", "0", "0")
+    d.range("target[y]", "0", "0")
+    d.point("target[x]", {}, "0")
+    d.theorem("largest-ball", "ball", [1, 2, 3, 4], radius="1/2", outer="3/4")
+    d.range("require[1]", "-3/4", "3/4", [5])
+    d.range("require[2]", "-3/4", "3/4", [5])
+    d.point("require[2]", {"y": "-1/2"}, "-1/2", uses=[5])
+    entries = d.found(None, asked, shown("box", ONE))
+    judged("beyond the ball", entries)
+    reject("beyond the ball, less", but(entries, "proof 5 concludes upper", hair("3/4", -1)), "proof line 6", WIDER)
+    reject("beyond the ball, a point", but(entries, "proof 7 witness at y", hair("-1/2", -1)), "proof line 8", "at.y: outside the range")
+
+
+def rounded_stretches() -> None:
+    """With 24 bits 1/3 is known to a unit: half of it is taken off, whatever the sign of the direction."""
+    unit_ = 1 << 24
+    d = Lines(claim("x/3", "y/3 - x/3"))
+    d.metric("box", ONE, ONE)
+    d.range("target[x]", "0", "0")
+    d.range("target[y]", "0", "0")
+    d.theorem("smaller-ball", "ball", [1, 2, 3], radius="1")
+    d.range("image[x]", "-1/3", "1/3")
+    d.range("image[y]", "-2/3", "2/3")
+    d.theorem("invariant-region", "invariant", [1, 2, 3, 5, 6])
+    d.matrix("slopes", "2/3", [7])
+    d.matrix("misses", "0", [7])
+    d.theorem("slope", "slope", [8, 9], gain="2/3", residual="0")
+    d.theorem("ultimate-bound", "bound[slope]", [7, 10], bound="0")
+    d.stretch("slopes", {"x": "0", "y": "0"} , ["1", "-1"], str(Q(unit_ // 3 * 2, unit_)), [7], bits=24)
+    entries = d.found("region", [("settles", "proved")], shown("box", ONE))
+    for direction in (["1", "-1"], ["-1", "1"], ["-3", "3"]):
+        changed = but(entries, "proof 11 witness direction", direction)
+        accept(f"rounded stretch {direction}", changed)
+        reject(f"rounded stretch {direction}, more", but(changed, "proof 11 concludes lower", hair(str(Q(unit_ // 3 * 2, unit_)), 1)), "proof line 12", "slopes: the direction")
+
+
+beyond_the_ball()
+rounded_stretches()
+def units_of_lengths() -> None:
+    """In a norm of the prover's choice any length can be made small: it has to be at least the error of every state."""
+    asked = ["bound <= 5/8", "residual <= 1/8", "gain <= 4/5", "bound(x) <= 7/20"]
+    for rest in ("", "[metric]\nkind = \"auto\"", STATED, "[metric]\nkind = \"box\"\nweights = { y = 2 }"):
+        judged(f"lengths in {rest!r}", region(asked, rest=rest).found("region", [(that, "proved") for that in asked], BOX))
+    plain = region(asked, rest="").found("region", [(that, "undecided" if n < 2 else "proved") for n, that in enumerate(asked)], BOX)
+    less = hair("1", -1)
+    for i, (x, y, r) in enumerate(((less, "2", less), ("1", hair("2", 0), "1"))):
+        rows, inverse = [[x, "0"], ["0", y]], [[str(1 / Q(x)), "0"], ["0", str(1 / Q(y))]]
+        entries = but(plain, "proof 0 witness", {"kind": "box", "rows": rows, "inverse": inverse}, "proof 4 concludes", {"radius": r, "outer": "1"}, "proof 8 concludes norm", "4/5", "proof 10 concludes gain", "4/5",
+                      "proof 11 concludes bound", "5/8", "results metric", {"kind": "box", "weights": {"x": x, "y": y}})
+        entries = without(entries, 16, 17)
+        if i:
+            accept("lengths in a norm as large as every state", but(entries, "results requirements 0 verdict", "proved", "results requirements 1 verdict", "proved"))
+        else:
+            judged("lengths in a norm a hair smaller", entries)
+
+
+units_of_lengths()
+smaller_balls()
+other_sets()
+refused_rules()
+escapes()
+of_no_use()
+at_the_edges()
+over_ranges()
+rounding_of_stances()
 # fmt: on
 
 

@@ -1162,6 +1162,51 @@ def obligations_of_stances(checker: Any) -> None:
             meant(checker, text, name)
 
 
+TOGETHER = "a = [1, 2]\nd = { range = [0, 1], within = true }"
+
+
+@unit
+def sensitivities_of_stances(checker: Any) -> None:
+    """By what a stance rests on; but for a signal's effect, which follows it."""
+    for text, expected in (
+        (moving(rates='x = "xd"\nxd = "a*x"', requires=("sensitivity(v, a) < 1",)), "(((flow[21](1,mark[a](a))*0)+(flow[22](1,mark[a](a))*v))/2)"),
+        (moving(define='dur = "a + 1"', duration="dur", requires=("sensitivity(v, dur) < 1",)), "(((flow[21](1,mark[dur]((a+1)))*0)+(flow[22](1,mark[dur]((a+1)))*v))/2)"),
+        (moving(TOGETHER, rates='x = "xd"\nxd = "x + d"', step="xd*a", requires=("sensitivity(v, a) < 1",)), "((((flow[21](1)*0)+(flow[22](1)*v))+(flow[23](1)*d(xd)))*mark[a](a))"),
+    ):
+        assert meant(checker, text, "require[1]")[0] == expected, text
+    for text, by in (
+        (moving(TOGETHER, rates='x = "xd"\nxd = "a*x + d"', requires=("sensitivity(v, a) < 1",)), "a"),
+        (moving(TOGETHER, rates='x = "xd"\nxd = "x + d"', define='dur = "a + 1"', duration="dur", requires=("sensitivity(v, dur) < 1",)), "dur"),
+    ):
+        with refuses(checker.calculus.Unprovable, f"{by}: a signal's effect within the stance follows it, and may take any course"):
+            meant(checker, text, "require[1]")
+
+
+@unit
+def rates_of_what_is_not_defined(checker: Any) -> None:
+    """What may not be defined has no rate there either: it stays, times 0, unless the rate holds it anyway."""
+    two = '[[library]]\nfile = "h.csv"\nat = { u = "a" }\n[[library]]\nfile = "g.csv"\nat = { w = "a" }\n'
+    for text, expected in (
+        ("t + 1/a", "(1+(0*(1/a)))"), ("t/a", "(1/a)"), ("t + sqrt(a)*t", "(1+sqrt(a))"), ("h + t", "(1+(0*reading[h](a)))"), ("h + g + t", "((1+(0*reading[h](a)))+(0*reading[g](a)))"),
+        ("h*t + g", "(reading[h](a)+(0*reading[g](a)))"), ("log(a) + t/a + t", "(((1/a)+1)+(0*log(a)))"),
+    ):
+        d = derivation(checker, moving(rest=two, requires=(f"value(dt({text}))",)), {"h.csv": HEIGHTS, "g.csv": "w,g\n1,1\n2,3\n"})
+        assert shown(d.terms, d.meaning("require[1]", checker.derive.Domain(False, Q(0), (Q(0), Q(0)))).root) == expected, text
+
+
+@unit
+def ranges_on_which_a_stance_rests(checker: Any) -> None:
+    """Of a state the ball's own part is all that is shown to last; of an uncertain value its range."""
+    for over, ball, good in (("v = [0, 1]", False, True), ("v = [0, 1]", True, False), ("a = [1, 2]", True, True), ("a = [1, 2]", False, True), ("a = [1, 3]", True, False), ("c = [0, 9]", True, True)):
+        text = moving("a = [1, 2]\nc = [0, 1]", duration="a + v**2", step="xd/2 + c", rest=f'[[require]]\nthat = "value(next(v))"\nover = {{ {over} }}', requires=())
+        d, domain = derivation(checker, text), checker.derive.Domain(ball, Q(1, 8), (Q(0), Q(0)))
+        if good:
+            assert d.meaning("require[1]", domain).on_set == ("v" not in over)
+        else:
+            with refuses(checker.calculus.Unprovable, f"{over[0]}: the stance is not shown to last beyond the range of the claim"):
+                d.meaning("require[1]", domain)
+
+
 # certificates: y stands still for a second, y(0) = v/2 + w and v⁺ = y, so all is as it would be without a stance
 
 STOOD = {"rates": 'y = "0*y"', "start": 'y = "v/2 + w"', "duration": "1", "uncertain": 'w = ["-1/4", "1/4"]', "define": 'unused = "1"', "state": "[-1, 1]", "target": "0", "step": "y"}

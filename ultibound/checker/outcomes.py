@@ -182,7 +182,8 @@ class SeveralResults(Results):
             return verdict(proved, not self.any and opposed(r.relation, taken, c), span)
         found = {"bound": self.bound, "gain": self.gain, "residual": self.residual}.get(r.kind)
         upper = Span(None, None if found is None else found.upper)
-        proved = self.whole and compared(r.relation, upper, c)
+        # a length says nothing in a norm that may be as small as one likes; a gain is the same in any unit
+        proved = self.whole and compared(r.relation, upper, c) and (r.kind == "gain" or self.meant())
         # in a metric the claim fixes, what is surely taken settles it; in another norm it might be less
         final = self.stated() and not self.any and r.kind != "bound" and found is not None
         # nor is another route's gain, told apart from a correction, known from here
@@ -193,6 +194,10 @@ class SeveralResults(Results):
         """How far a state can be in the long run: taken by an orbit, and proved."""
         lower, upper = self.orbits[s], self.bounds.get(s)
         return None if lower is None and upper is None else Span(lower, upper)
+
+    def meant(self) -> bool:
+        """Whether lengths mean something: the claim fixes the norm, or it is at least the error of every state."""
+        return self.stated() or all(self.metric.support(i) <= 1 for i in range(len(self.states)))
 
     def stated(self) -> bool:
         return self.statement.metric == "box" or bool(self.statement.weights)

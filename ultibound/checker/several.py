@@ -87,15 +87,15 @@ def reaches(norm: Metric, outer: Fraction, state: int, edge: Fraction) -> bool:
 
 def invariant_region(d: Derivation, proves: str, used: list[Line]) -> Domain:
     """proofs/invariant-set.md (1), state by state."""
-    n, norm = len(d.states), used[0].metric if used else None
+    norm = used[0].metric if used else None
     wanted = [("range", f"{x}[{s}]") for x in ("target", "image") for s in d.states]
     require(proves, "invariant", used, [("metric", "metric"), *wanted])
     for line, s in zip(used[1:], (*d.states, *d.states), strict=True):
         _, inner = d.region(s)
         if not (inner[0] <= line.concludes["lower"] and line.concludes["upper"] <= inner[1]):
             raise Rejected(f"{line.proves} is not shown to stay in the region")
-    spans = tuple((x.concludes["lower"], x.concludes["upper"]) for x in used[1 : 1 + n])
-    return Domain(False, Fraction(0), spans[0], targets=spans, metric=norm)
+    target = used[1].concludes
+    return Domain(False, Fraction(0), (target["lower"], target["upper"]), metric=norm)
 
 
 def concluded(

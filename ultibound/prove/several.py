@@ -19,6 +19,7 @@ from ..certificate.lines import downward, upward
 from ..certificate.norms import NormWriter, moves_of
 from ..certificate.several import SeveralRemarks
 from ..checker.matrices import Leaf, Matrix, Metric, metric
+from ..checker.numerals import decimal_up
 from ..checker.reals import Undefined
 from ..checker.rules import Rejected
 from ..claim import ClaimError
@@ -35,6 +36,7 @@ if TYPE_CHECKING:
 
 SAMPLES = 300
 FEW = 3000  # leaves of a search that only compares metrics
+DIGITS = 12  # of the unit of a metric
 COST, LEAST = 12, 300  # an entry of a leaf counts as so many cells, exact arithmetic being what it is; leaves allowed
 SPARE = 1 - 1e-9
 ORBIT_BITS = 128
@@ -167,10 +169,12 @@ class SeveralAttempt(Attempt):
         room = np.array([to_float(x) for x in self._rooms()])
         # a target on the edge: any scale will do
         room = np.where(room > 0, room, max(float(room.max()), 0.0) or 1.0)
-        self.others, weights = proposals(jacobians, missed[:, :, 0], room), self._weights()
-        if weights is None and self.claim.metric == "auto":
+        self.others, weights = [scaled(p) for p in proposals(jacobians, missed[:, :, 0], room)], self._weights()
+        if weights is not None:
+            return proposals(jacobians, missed[:, :, 0], room, "box", weights)
+        if self.claim.metric == "auto":
             return self.others
-        return proposals(jacobians, missed[:, :, 0], room, "box" if weights else self.claim.metric, weights)
+        return [scaled(p) for p in proposals(jacobians, missed[:, :, 0], room, self.claim.metric)]
 
     def _sampled(self, matrices: Matrices, rng: np.random.Generator) -> Floats:
         at = drawn(Obligation("samples", 0, "", tuple(matrices.variables), False), SAMPLES, rng)
@@ -390,6 +394,19 @@ class SeveralAttempt(Attempt):
         return SeveralRemarks(
             self.claim, self.obligations, self.results, self.ranges.limits, self.ranges.interrupted
         ).all()
+
+
+def scaled(p: Proposal) -> Proposal:
+    """The same metric in the unit in which ‖e‖ is at least the error of every state, and no larger than that asks for.
+
+    proofs/several.md (5e)
+    """
+    norm = metric(p.kind, p.rows, p.inverse, len(p.inverse))
+    unit = Fraction(decimal_up(max(norm.support(i) for i in range(len(p.inverse))), DIGITS))
+    rows = tuple(tuple(x * unit for x in row) for row in p.rows)
+    inverse = tuple(tuple(x / unit for x in row) for row in p.inverse)
+    size = to_float(unit)
+    return Proposal(p.kind, rows, inverse, p.gain, p.residual * size, p.radius * size)
 
 
 def floats(m: Matrix) -> Floats:
