@@ -1336,6 +1336,7 @@ def stances_at_equality() -> None:
         verdict = "undecided" if shrink else "refuted"
         entries = d.entries("region", [(asked_[1][0], verdict)])
         accept(f"pushed out, shrink {shrink}, growth {growth}", entries)
+        accept(f"pushed out, how far, shrink {shrink}, growth {growth}", but(entries, "results requirements 0 value", {"lower": None, "upper": "1/2"}))
         if shrink:
             reject("pushed out of a smaller set", but(entries, "results requirements 0 verdict", "refuted"), "results", "[1].verdict: refuted is claimed")
 
