@@ -75,7 +75,7 @@ def test_the_checker_needs_the_standard_library_alone() -> None:
 
 
 @pytest.mark.xfail(
-    reason="5,600 lines, of which 1,113 read the whole claim format and 1,700 are about continuous stances; the limit is to be met or stated anew"
+    reason="6,800 lines, of which 1,113 read the whole claim format, 1,700 are about continuous stances and 1,200 about several states; the limit is to be met or stated anew"
 )
 def test_the_checker_can_be_read_in_a_day() -> None:
     lines = sum(len(p.read_text(encoding="utf-8").splitlines()) for p in (PACKAGE / "checker").rglob("*.py"))

@@ -18,7 +18,7 @@ from ultibound.checker import check
 from ultibound.claim import ClaimError
 
 COUNT = 50
-EVERY = 1 if os.environ.get("ULTIBOUND_LONG") else 3
+EVERY = 1 if os.environ.get("ULTIBOUND_LONG") else 7
 
 
 def drawn(seed: int) -> tuple[np.ndarray, np.ndarray]:

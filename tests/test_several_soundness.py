@@ -10,7 +10,7 @@ import pytest
 from tests.several_campaign import KINDS, Tally, run
 
 LONG = bool(os.environ.get("ULTIBOUND_LONG"))
-CLAIMS, BLOCK = 140 if LONG else 14, len(KINDS)
+CLAIMS, BLOCK = 140 if LONG else len(KINDS), len(KINDS)
 
 
 @pytest.fixture(scope="module")
