@@ -66,7 +66,7 @@ def test_bounds_hold_the_exact_sums(record_property: Callable[[str, str], None])
     table = ["states  bounds   median    worst   bound/exact"]
     table += [f"{n:6d}{len(x):8d}{np.median(x):9.3f}{max(x):9.3f}" for n, x in sorted(ratios.items())]
     record_property("table", "\n".join(table))
-    assert all(np.median(x) < 2.5 and max(x) < 12 for x in ratios.values())
+    assert all(np.median(x) < 3 and max(x) < 12 for x in ratios.values())
 
 
 BENT = """
