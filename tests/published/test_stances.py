@@ -322,3 +322,53 @@ def test_box_of_height_and_step_time_as_dynamics(gap: str) -> None:
     closed = proved(text)
     for name in ("gain", "residual", "bound"):
         agree(closed.results[name], c.results[name], Fraction(gap) * 2)
+
+
+class TestDivergentComponent:
+    """Step recursion of the divergent component, orbital energy and transit over the foot: z = 0.8 m, T = 0.45 s.
+
+    Recursion: Khadiv et al., arXiv:1609.09822 (2016); b* = L/(exp ωT − 1) from memory, its digits recomputed. Orbital energy: Kajita and Tani,
+    ICRA 1991 (not opened: the elementary solution of x'' = ω²x).
+    """
+
+    def test_recursion(self) -> None:
+        """b⁺ = exp(ωT) b − u with u = L + κ(b − b*), b the offset that ξ' = ωξ carries through the stance."""
+        with mpmath.workdps(DIGITS):
+            w = mpmath.sqrt(mpmath.mpf("9.81") / mpmath.mpf("0.8"))
+            grown = mpmath.exp(w * mpmath.mpf("0.45"))
+            same(w, "3.50178525897862560523725466046")
+            same(grown, "4.83462403358403219618270836335")
+            same(mpmath.mpf("0.4") / (grown - 1), "0.104312703539319319407753673305")
+            same(abs(grown - mpmath.mpf("4.5")), "0.334624033584032196182708363348")
+        text = (
+            "format = 1\n[constants]\nL = 0.4\nT = 0.45\nw = 'sqrt(9.81/0.8)'\n[gains]\nkappa = 4.5\n"
+            "[state]\nb = [0, 0.2]\n[dynamics]\nduration = 'T'\n[dynamics.start]\nxi = 'b'\n[dynamics.rate]\nxi = 'w*xi'\n"
+            "[next]\nb = 'xi - (L + kappa*(b - target(b)))'\n[target]\nb = 'L/(exp(w*T) - 1)'\n"
+            + require("settles", "gain < 0.34", "value(target(b))", "value(w)", "value(exp(w*T))")
+        )
+        found = proved(text).results
+        assert [r["verdict"] for r in found["requirements"]] == ["proved"] * 5
+        assert_encloses(found["gain"], "0.334624033584032196182708363348", WIDTH)
+        for entry, exact in zip(
+            found["requirements"][2:],
+            ("0.104312703539319319407753673305", "3.50178525897862560523725466046", "4.83462403358403219618270836335"),
+            strict=True,
+        ):
+            assert_encloses(entry["value"], exact, WIDTH)
+
+    def test_over_the_foot(self) -> None:
+        """From x = −0.15 m at 0.7 m/s: as fast again at +0.15 m, the energy kept, slowest over the foot."""
+        time = "log((0.7 + w*0.15)/(0.7 - w*0.15))/w"
+        rates, start, constants = 'x = "xd"\nxd = "w**2*x"', "x = -0.15\nxd = 0.7", "w = 'sqrt(9.81/0.8)'"
+        with mpmath.workdps(DIGITS):
+            w, x, v = mpmath.sqrt(mpmath.mpf("9.81") / mpmath.mpf("0.8")), mpmath.mpf("0.15"), mpmath.mpf("0.7")
+            same(mpmath.log((v + w * x) / (v - w * x)) / w, "0.556190622277202113443361626713")
+            same((v**2 - w**2 * x**2) / 2, "0.107046875000000000000000000000")
+            same(mpmath.sqrt(v**2 - w**2 * x**2), "0.462702658302283800484051362382")
+        asked = ("value(x)", "value(xd)", "value(t)", "value((xd**2 - w**2*x**2)/2)")
+        exact = ("0.15", "0.7", "0.556190622277202113443361626713", "0.107046875")
+        for entry, value in zip(at_touchdown(rates, start, time, *asked, constants=constants), exact, strict=True):
+            assert_encloses(entry["value"], Fraction(value) if len(value) < 12 else value, WIDTH)
+        over = at_touchdown(rates, start, f"{time}/2", "value(xd)", "value((xd**2 - w**2*x**2)/2)", constants=constants)
+        assert_encloses(over[0]["value"], "0.462702658302283800484051362382", WIDTH)
+        assert_encloses(over[1]["value"], Fraction("0.107046875"), WIDTH)
