@@ -273,6 +273,12 @@ EQUIVALENT: dict[Key, str] = {
     ("models", "steepest", "degrees[0] ** 2 * (degrees[0] ** 2 - 1) // 3", "-(-(degrees[0] ** 2 * (degrees[0] ** 2 - 1)) // 3)"):
         "n n (n n - 1) is a multiple of 3",
     ("rates", "Coefficients.reading", "len(corners) // 2", "-(-len(corners) // 2)"): "a cell has an even number of corners",
+    ("several", "gone_through", "known[1] is flows", "known[1] is not flows"):
+        "leaves are kept to save time: every flow on a proof is one of the same stance, and encloses it",
+    ("several", "gone_through", "count += 1", "count -= 1"): "how many leaves are kept to save time changes no leaf",
+    ("several", "gone_through", "count <= KEPT", "count < KEPT"): "how many leaves are kept to save time changes no leaf",
+    ("several", "gone_through", "count <= KEPT", "count < KEPT (2)"): "as above",
+    ("several", "gone_through", "count <= KEPT", "count > KEPT (2)"): "leaves that are not kept are evaluated anew",
     ("flows", "spread", "x >> zeros", "-(-x >> zeros)"): "only zeros are shifted out",
     ("flows", "divisions", "lines[0] < g < lines[-1]", "lines[0] <= g < lines[-1]"): "the first cut is among the cuts",
     ("flows", "divisions", "lines[0] < g < lines[-1]", "lines[0] < g <= lines[-1]"): "the last cut is among the cuts",
