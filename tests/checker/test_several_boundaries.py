@@ -555,7 +555,7 @@ ROOT_HALF = "0.7071067811865475244"  # of 2, from below
 def little(kind: str, rows: Any, inverse: Any, radius: str, outer: str, ends: tuple[tuple[str, str], tuple[str, str]] = (("-1", "1"), ("-1", "1")), at: tuple[str, str] = ("0", "0"),
            first: Sequence[int] = (0,), rest: str = "") -> Entries:
     """Lines: 1 metric, 2 3 targets, 4 5 points of them, 6 ball (from the points of these ranks), 7 8 images, 9 invariant."""
-    d = Lines(claim(f"(x + ({at[0]}))/2", f"(y + ({at[1]}))/2", ends=tuple(f'["{a}", "{b}"]' for a, b in ends), target=at, rest=rest))  # type: ignore[arg-type]
+    d = Lines(claim(f"(x + ({at[0]}))/2", f"(y + ({at[1]}))/2", ends=tuple(f'["{a}", "{b}"]' for a, b in ends), target=at, rest=rest))  # type: ignore[arg-type]  # two ends, two of a target
     d.metric(kind, rows, inverse)
     d.range("target[x]", at[0], at[0])
     d.range("target[y]", at[1], at[1])

@@ -72,12 +72,12 @@ class SeveralAttempt(Attempt):
         if images is not None:
             on = w.append("invariant-region", "invariant", [number, *lines, *images], {}, {})
         elif found is not None:
-            self.domain = self._ball(self.norm, found.radius, found.beyond)
+            self.domain = self._within(self.norm, found.radius, found.beyond)
         for k in range(1, len(o.motion.positive) + 1 if o.motion is not None else 1):
             self.ranges.enclose(o.support(k, self.domain), on, gap=DECIDED, side=-1)
         moves = self._movements()
         slopes, misses = self._norm("slopes", on), self._norm("misses", on)
-        pair = self._slope(slopes, misses, moves)
+        pair = self._contraction(slopes, misses, moves)
         tables = self._entries(slopes, misses, on)
         invariant = on if images is not None else self._kept(ball, pair, tables, moves)
         if invariant is not None and pair is not None:
@@ -117,7 +117,7 @@ class SeveralAttempt(Attempt):
         for _ in range(1 if images is not None else LOOKS):
             for p in self._proposed(domain):
                 norm = metric(p.kind, p.rows, p.inverse, n)
-                ball = self._ball(norm, self._largest(norm))
+                ball = self._within(norm, self._largest(norm))
                 size = self._size(p, ball) if images is None else 0.0  # the region is the set in any metric
                 if best is None or size < best[0]:
                     best = size, p, norm, ball
@@ -129,7 +129,7 @@ class SeveralAttempt(Attempt):
         if best is None:
             p = self._plain()
             norm = metric(p.kind, p.rows, p.inverse, n)
-            best = np.inf, p, norm, self._ball(norm, self._largest(norm))
+            best = np.inf, p, norm, self._within(norm, self._largest(norm))
         _, self.chosen, self.norm, self.domain = best
         if images is not None:
             self.domain = Domain("region", self.domain.radius, spans[0], targets=spans)
@@ -156,7 +156,7 @@ class SeveralAttempt(Attempt):
     def _shrunk(self) -> None:
         """A smaller ball that is kept, if the largest is not."""
         for share in SHARES:
-            smaller = self._ball(self.norm, Fraction(f"{to_float(self.domain.radius) * share:.4g}"))
+            smaller = self._within(self.norm, Fraction(f"{to_float(self.domain.radius) * share:.4g}"))
             if self._size(self.chosen, smaller) < np.inf:
                 self.domain = smaller
                 return
@@ -195,7 +195,7 @@ class SeveralAttempt(Attempt):
             raise ClaimError.of(*place, "cannot be shown to lie inside the region; widen the region a little")
         return Fraction(downward(found))
 
-    def _ball(self, norm: Metric, radius: Fraction, beyond: Fraction = Fraction(0)) -> Domain:  # type: ignore[override]
+    def _within(self, norm: Metric, radius: Fraction, beyond: Fraction = Fraction(0)) -> Domain:
         spans = tuple((t.lower, t.upper) for t in self.targets)
         wide = tuple(norm.support(i) for i in range(len(spans)))
         return Domain("ball", radius, spans[0], beyond, spans, wide)
@@ -309,7 +309,7 @@ class SeveralAttempt(Attempt):
             w.stretch(proves, found.point, found.direction, bits, on)
         return line, found.trees, bits
 
-    def _slope(  # type: ignore[override]
+    def _contraction(
         self,
         slopes: tuple[int, tuple[str, ...], int] | None,
         misses: tuple[int, tuple[str, ...], int] | None,
