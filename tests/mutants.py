@@ -279,7 +279,9 @@ EQUIVALENT: dict[Key, str] = {
     ("several", "gone_through", "count <= KEPT", "count < KEPT"): "how many leaves are kept to save time changes no leaf",
     ("several", "gone_through", "count <= KEPT", "count < KEPT (2)"): "as above",
     ("several", "gone_through", "count <= KEPT", "count > KEPT (2)"): "leaves that are not kept are evaluated anew",
-    ("flows", "spread", "x >> zeros", "-(-x >> zeros)"): "only zeros are shifted out",
+    ("flows", "shifted_to", "x >> zeros", "-(-x >> zeros)"): "only zeros are shifted out",
+    ("flows", "Flows._enclosed", "len(self._found) == MOST_KEPT", "len(self._found) != MOST_KEPT"):
+        "how many enclosures are kept to save time changes none of them",
     ("flows", "divisions", "lines[0] < g < lines[-1]", "lines[0] <= g < lines[-1]"): "the first cut is among the cuts",
     ("flows", "divisions", "lines[0] < g < lines[-1]", "lines[0] < g <= lines[-1]"): "the last cut is among the cuts",
     ("flows", "divisions", "set(inside) <= set(lines)", "set(inside) < set(lines)"): "the ends are no lines inside",
