@@ -205,13 +205,13 @@ class Battery:
                     self.questions[name](package)
             return None
         except (Exception, TooLong):
+            if name in self.questions:
+                self.order.remove(name)
+                self.order.insert(0, name)
             return name
         finally:
             signal.setitimer(signal.ITIMER_REAL, 0)
             signal.signal(signal.SIGALRM, before)
-            if name in self.questions:
-                self.order.remove(name)
-                self.order.insert(0, name)
 
 
 # (module, function, expression, what it became): why no verdict, place or reason changes
