@@ -298,8 +298,6 @@ v = 0
 that = "sensitivity(v, T) < 0"
 [[require]]
 that = "sensitivity(v, T) > -1"
-[effort]
-cells = 300
 """
     results = proved(text, data={"g.csv": table}).results
     assert [r["verdict"] for r in results["requirements"]] == ["undecided", "undecided"]
@@ -333,8 +331,6 @@ v = "0.5*v + 0.1*y"
 v = 0
 [[require]]
 that = "sensitivity(v, {by}) {relation}"
-[effort]
-cells = 300
 """
     (entry,) = proved(text, data={"g.csv": "u,y\n" + nodes}).results["requirements"]
     low, high = ends(entry["value"])
