@@ -73,7 +73,7 @@ def invariant_ball(d: Derivation, proves: str, used: list[Line], claimed: Quanti
     if proves != "invariant" or [x.proves for x in used[:1]] != ["ball"] or len(used) != 2:
         raise Rejected("invariant rests on the ball, then a gain and residual")
     ball, pair = used
-    if pair.rule not in PAIRS or pair.domain != ball.domain or ball.domain is None:
+    if pair.rule not in PAIRS or pair.proves != pair.rule or pair.domain != ball.domain or ball.domain is None:
         raise Rejected("the gain refers to another set")
     r = ball.domain.radius
     if not pair.concludes["gain"] * r + pair.concludes["residual"] <= r:
@@ -83,8 +83,8 @@ def invariant_ball(d: Derivation, proves: str, used: list[Line], claimed: Quanti
 
 def slope(d: Derivation, proves: str, used: list[Line], claimed: Quantities) -> Domain | None:
     """proofs/slope.md: k from the slopes over the set, the residual from the target's own step and movement."""
-    s = d.state
-    return mean_value(d, proves, used, claimed, ("slope", f"slope[{s},{s}]", f"target-miss[{s}]"))
+    s, on, steps = d.state, *counted(d, proves)
+    return mean_value(d, proves, used, claimed, (f"slope{on}", f"slope{on}[{s},{s}]", f"target-miss{on}[{s}]"), steps)
 
 
 def split(d: Derivation, proves: str, used: list[Line], claimed: Quantities) -> Domain | None:
@@ -92,16 +92,24 @@ def split(d: Derivation, proves: str, used: list[Line], claimed: Quantities) -> 
     s = d.state
     if len(used) > 1 and used[1].domain != used[0].domain:
         raise Rejected("the residual refers to another set")
-    return mean_value(d, proves, used, claimed, ("split", f"split-slope[{s},{s}]", f"split-residual[{s}]"))
+    steps = d.statement.horizon
+    return mean_value(d, proves, used, claimed, ("split", f"split-slope[{s},{s}]", f"split-residual[{s}]"), steps)
+
+
+def counted(d: Derivation, proves: str) -> tuple[str, int]:
+    """What stands behind the name of a slope over fewer steps than the claim's, and how many those are."""
+    on = proves[len("slope") :] if proves.startswith("slope@") else ""
+    return on, d.steps(on or None)
 
 
 def mean_value(
-    d: Derivation, proves: str, used: list[Line], claimed: Quantities, names: tuple[str, str, str]
+    d: Derivation, proves: str, used: list[Line], claimed: Quantities, names: tuple[str, str, str], steps: int
 ) -> Domain | None:
     moved = [("range", x) for x in movements(d)]
     require(proves, names[0], used, [("range", names[1]), ("range", names[2]), *moved])
     if not (
-        claimed["gain"] >= magnitude(used[0]) and claimed["residual"] >= magnitude(used[1]) + movement(d, used[2:])
+        claimed["gain"] >= magnitude(used[0])
+        and claimed["residual"] >= magnitude(used[1]) + movement(d, used[2:], steps)
     ):
         raise Rejected("gain or residual: less than what the lines used show")
     return used[0].domain
@@ -132,7 +140,7 @@ def curve(d: Derivation, proves: str, used: list[Line], claimed: Quantities) -> 
     require(proves, "curve", used, wanted + [("range", x) for x in movements(d)])
     if any(line.domain != domain for line in used[1 : m + 2]):
         raise Rejected("a shell or line of another set")
-    moved = movement(d, used[m + 2 :])
+    moved = movement(d, used[m + 2 :], d.statement.horizon)
     over = max(used[m + 1].concludes["upper"], Fraction(0))
     if not (0 <= domain.slope <= claimed["gain"] and claimed["residual"] >= over + moved):
         raise Rejected("gain or residual: less than what the line shows")
@@ -165,12 +173,35 @@ def ultimate_bound(d: Derivation, proves: str, used: list[Line], claimed: Quanti
     invariant, pair = used
     if proves != f"bound[{pair.rule}]":
         raise Rejected(f"uses: gain and residual of another route than {proves}")
-    if pair.domain != invariant.domain:
-        raise Rejected("the gain refers to another set")
+    if pair.domain != invariant.domain or pair.proves != pair.rule:
+        raise Rejected("the gain refers to another set, or to fewer steps")
     k, residual = pair.concludes["gain"], pair.concludes["residual"]
     if not (0 <= k < 1 and claimed["bound"] >= residual / (1 - k)):
         raise Rejected("bound: less than residual / (1 - gain), or the gain is not below 1")
     return invariant.domain
+
+
+def course(d: Derivation, proves: str, used: list[Line], claimed: Quantities) -> Domain:
+    """proofs/horizon.md (2): the first step keeps the ball, or every step on the way stays in the region."""
+    n, ball = d.statement.horizon, used[0].domain if used and used[0].proves == "ball" else None
+    steps = range(1, n if len(used) > 2 else 2)
+    require(proves, "course", used[1:], [("slope", f"slope@{j}") for j in steps])
+    if n == 1 or ball is None or any(line.domain != ball for line in used[1:]):
+        raise Rejected("a course rests on the ball, then gain and residual of steps on the way")
+    first = used[1].concludes
+    if first["gain"] * ball.radius + first["residual"] <= ball.radius:
+        return ball
+    if len(used) < n:
+        raise Rejected("the first step does not keep the ball, and of later ones nothing is shown")
+    ends = [tuple(x.concludes["gain"] * r + x.concludes["residual"] for r in (ball.radius, ball.outer)) for x in used[1:]]
+    radius, outer = (max(x) for x in zip((ball.radius, ball.outer), *ends, strict=True))
+    for i, s in enumerate(d.states):
+        low, high = ball.targets[i] if ball.targets else ball.target
+        _, inner = d.region(s)
+        wide = Fraction(1) if ball.metric is None else ball.metric.support(i)
+        if not radius * wide <= min(low - inner[0], inner[1] - high):
+            raise Rejected(f"a step on the way is not shown to stay in the region of {s}")
+    return replace(ball, radius=radius, beyond=max(outer, radius) - radius)
 
 
 THEOREMS = {
@@ -181,6 +212,7 @@ THEOREMS = {
     "split": split,
     "curve": curve,
     "invariant-ball": invariant_ball,
+    "course": course,
     "ultimate-bound": ultimate_bound,
 }
 
@@ -189,10 +221,10 @@ def movements(d: Derivation) -> list[str]:
     return [f"target-slope[{d.state},{h}]" for h in d.moving()]
 
 
-def movement(d: Derivation, lines: list[Line]) -> Fraction:
-    """proofs/slope.md (3): how far held quantities may move the target in a step."""
+def movement(d: Derivation, lines: list[Line], steps: int) -> Fraction:
+    """proofs/slope.md (3): how far held quantities may move the target in so many steps."""
     pairs = zip(d.moving(), lines, strict=True)
-    return sum((magnitude(line) * d.change(h)[1] for h, line in pairs), Fraction(0))
+    return sum((magnitude(line) * d.change(h, steps)[1] for h, line in pairs), Fraction(0))
 
 
 def require(proves: str, name: str, used: list[Line], wanted: list[tuple[str, str]]) -> None:
