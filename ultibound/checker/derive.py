@@ -132,11 +132,14 @@ class Derivation:
         return int(text[1:])
 
     def after(self, steps: int, bound: dict[str, int], s: str, cut: str = "") -> int:
-        """A state after so many steps, from what `bound` says of the first: proofs/horizon.md (1)."""
+        """A state after so many steps, less what the target has moved until the last: proofs/horizon.md (1)."""
         names = self.names(bound, cut)
         for j in range(2, steps + 1):
             names = self.names({**bound, **onward(names, self.states, j, self.stays)})
-        return names.of(f"next({s})")
+        root, target = names.of(f"next({s})"), f"target({s})"
+        if steps == 1 or not self.moving(s):
+            return root
+        return self.terms.put("add", (root, self.terms.put("sub", (self.names().of(target), names.of(target)))))
 
     def stays(self, x: int, name: str) -> int:
         """A state or held quantity on the way, clipped where libraries and flows are known for its range only."""
@@ -452,12 +455,12 @@ class Derivation:
         cells = [constant(e, self.statement.values) for e in quantity.values]
         return min(c[1] for c in cells), max(c[0] for c in cells)
 
-    def change(self, held: str, steps: int = 1) -> Ends:
-        """How far a held quantity moves in so many steps, surely (in one) and at most: never beyond its range."""
+    def change(self, held: str) -> Ends:
+        """How far a held quantity moves in one step, surely and at most; never more than the width of its range."""
         quantity = self.statement.uncertain[held]
         (low, high), (inner_low, inner_high) = self.occurs(quantity), self.surely(quantity)
         moved = constant(quantity.change, self.statement.values) if quantity.change is not None else (high - low,) * 2
-        return max(Fraction(0), min(moved[0], inner_high - inner_low)), min(moved[1] * steps, high - low)
+        return max(Fraction(0), min(moved[0], inner_high - inner_low)), min(moved[1], high - low)
 
     def leaves_out(self, r: Requirement) -> bool:
         """Whether `over` may leave out values that occur (always said of a defined name: it is set free)."""

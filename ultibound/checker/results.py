@@ -391,8 +391,7 @@ class Results:
         if name == "curve":
             used = [self.proof.lines[n] for n in line.uses]
             radii = used[0].domain.radii if used[0].domain is not None else ()
-            moved = movement(self.derivation, used[len(radii) + 2 :], self.statement.horizon)
-            highest = levels(used[1 : len(radii) + 1], moved)
+            highest = levels(used[1 : len(radii) + 1], movement(self.derivation, used[len(radii) + 2 :]))
             by_line = led
 
             def led(e: Fraction) -> Fraction:

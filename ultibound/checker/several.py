@@ -14,7 +14,7 @@ from .jacobians import Table, middle_and_half
 from .matrices import Leaf, Matrix, Metric, comparison, entries, metric, norm_at_most
 from .numerals import Rejected, quantity
 from .periodic import periodic
-from .theorems import Line, Quantities, counted, magnitude, parted, require
+from .theorems import Line, Quantities, fewer, magnitude, parted, require
 
 OWN = ("metric", "matrix", "entries", "stretch", "componentwise", "invariant-rows", "periodic")
 KEPT = 5000  # leaves in memory
@@ -222,23 +222,23 @@ def movements(d: Derivation) -> list[tuple[str, str]]:
     return [(s, h) for s in d.states for h in d.moving(s)]
 
 
-def moved(d: Derivation, lines: list[Line], steps: int) -> list[Fraction]:
-    """How far held quantities may move the target of each state in so many steps: proofs/slope.md (3)."""
+def moved(d: Derivation, lines: list[Line]) -> list[Fraction]:
+    """How far held quantities may move the target of each state in a step: proofs/slope.md (3)."""
     found = dict.fromkeys(d.states, Fraction(0))
     for (s, h), line in zip(movements(d), lines, strict=True):
-        found[s] += magnitude(line) * d.change(h, steps)[1]
+        found[s] += magnitude(line) * d.change(h)[1]
     return list(found.values())
 
 
 def slope(d: Derivation, proves: str, used: list[Line], claimed: Quantities) -> Domain:
     """proofs/several.md (2): gain and residual in the metric."""
     ranges = [("range", f"target-slope[{s},{h}]") for s, h in movements(d)]
-    on, steps = counted(d, proves)
+    on = fewer(proves)
     require(proves, f"slope{on}", used, [("matrix", f"slopes{on}"), ("matrix", f"misses{on}"), *ranges])
     domain = used[0].domain
     if domain is None or domain.metric is None or used[1].domain != domain:
         raise Rejected("the residual refers to another set")
-    residual = used[1].concludes["norm"] + domain.metric.length(moved(d, used[2:], steps))
+    residual = used[1].concludes["norm"] + domain.metric.length(moved(d, used[2:]))
     if not (claimed["gain"] >= used[0].concludes["norm"] and claimed["residual"] >= residual):
         raise Rejected("gain or residual: less than what the lines used show")
     return domain
@@ -271,7 +271,7 @@ def componentwise(d: Derivation, proves: str, used: list[Line], witness: dict[st
 def compared(d: Derivation, slopes: Line, misses: Line, moves: list[Line]) -> tuple[Matrix, list[Fraction]]:
     """K and the residual of a comparison, movements of the target taken in."""
     rows = slopes.basis[0] if slopes.basis is not None else ()
-    m, far = len(rows), moved(d, moves, d.statement.horizon)
+    m, far = len(rows), moved(d, moves)
     k = tuple(tuple(slopes.concludes[f"{i},{j}"] for j in range(1, m + 1)) for i in range(1, m + 1))
     shifts = [sum((abs(x) * y for x, y in zip(row, far, strict=True)), Fraction(0)) for row in rows]
     return k, [misses.concludes[f"{i},1"] + shift for i, shift in enumerate(shifts, 1)]

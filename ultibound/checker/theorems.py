@@ -83,8 +83,8 @@ def invariant_ball(d: Derivation, proves: str, used: list[Line], claimed: Quanti
 
 def slope(d: Derivation, proves: str, used: list[Line], claimed: Quantities) -> Domain | None:
     """proofs/slope.md: k from the slopes over the set, the residual from the target's own step and movement."""
-    s, on, steps = d.state, *counted(d, proves)
-    return mean_value(d, proves, used, claimed, (f"slope{on}", f"slope{on}[{s},{s}]", f"target-miss{on}[{s}]"), steps)
+    s, on = d.state, fewer(proves)
+    return mean_value(d, proves, used, claimed, (f"slope{on}", f"slope{on}[{s},{s}]", f"target-miss{on}[{s}]"))
 
 
 def split(d: Derivation, proves: str, used: list[Line], claimed: Quantities) -> Domain | None:
@@ -92,24 +92,21 @@ def split(d: Derivation, proves: str, used: list[Line], claimed: Quantities) -> 
     s = d.state
     if len(used) > 1 and used[1].domain != used[0].domain:
         raise Rejected("the residual refers to another set")
-    steps = d.statement.horizon
-    return mean_value(d, proves, used, claimed, ("split", f"split-slope[{s},{s}]", f"split-residual[{s}]"), steps)
+    return mean_value(d, proves, used, claimed, ("split", f"split-slope[{s},{s}]", f"split-residual[{s}]"))
 
 
-def counted(d: Derivation, proves: str) -> tuple[str, int]:
-    """What stands behind the name of a slope over fewer steps than the claim's, and how many those are."""
-    on = proves[len("slope") :] if proves.startswith("slope@") else ""
-    return on, d.steps(on or None)
+def fewer(proves: str) -> str:
+    """What stands behind the name of a slope over fewer steps than the claim takes together."""
+    return proves[len("slope") :] if proves.startswith("slope@") else ""
 
 
 def mean_value(
-    d: Derivation, proves: str, used: list[Line], claimed: Quantities, names: tuple[str, str, str], steps: int
+    d: Derivation, proves: str, used: list[Line], claimed: Quantities, names: tuple[str, str, str]
 ) -> Domain | None:
     moved = [("range", x) for x in movements(d)]
     require(proves, names[0], used, [("range", names[1]), ("range", names[2]), *moved])
     if not (
-        claimed["gain"] >= magnitude(used[0])
-        and claimed["residual"] >= magnitude(used[1]) + movement(d, used[2:], steps)
+        claimed["gain"] >= magnitude(used[0]) and claimed["residual"] >= magnitude(used[1]) + movement(d, used[2:])
     ):
         raise Rejected("gain or residual: less than what the lines used show")
     return used[0].domain
@@ -140,7 +137,7 @@ def curve(d: Derivation, proves: str, used: list[Line], claimed: Quantities) -> 
     require(proves, "curve", used, wanted + [("range", x) for x in movements(d)])
     if any(line.domain != domain for line in used[1 : m + 2]):
         raise Rejected("a shell or line of another set")
-    moved = movement(d, used[m + 2 :], d.statement.horizon)
+    moved = movement(d, used[m + 2 :])
     over = max(used[m + 1].concludes["upper"], Fraction(0))
     if not (0 <= domain.slope <= claimed["gain"] and claimed["residual"] >= over + moved):
         raise Rejected("gain or residual: less than what the line shows")
@@ -221,10 +218,10 @@ def movements(d: Derivation) -> list[str]:
     return [f"target-slope[{d.state},{h}]" for h in d.moving()]
 
 
-def movement(d: Derivation, lines: list[Line], steps: int) -> Fraction:
-    """proofs/slope.md (3): how far held quantities may move the target in so many steps."""
+def movement(d: Derivation, lines: list[Line]) -> Fraction:
+    """proofs/slope.md (3): how far held quantities may move the target in a step."""
     pairs = zip(d.moving(), lines, strict=True)
-    return sum((magnitude(line) * d.change(h, steps)[1] for h, line in pairs), Fraction(0))
+    return sum((magnitude(line) * d.change(h)[1] for h, line in pairs), Fraction(0))
 
 
 def require(proves: str, name: str, used: list[Line], wanted: list[tuple[str, str]]) -> None:

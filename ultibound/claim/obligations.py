@@ -124,11 +124,18 @@ class Obligations:
         )
 
     def _after(self, bound: Mapping[str, int], s: str, cut: str = "", steps: int = 0) -> int:
-        """A state after the steps of the horizon, or as many as said: proofs/horizon.md (1)."""
-        scope = self._scope(bound, cut)
-        for j in range(2, (steps or self.claim.horizon) + 1):
+        """A state after the steps of the horizon, or as many as said, less what the target has moved until the last.
+
+        proofs/horizon.md (1)
+        """
+        scope, count = self._scope(bound, cut), steps or self.claim.horizon
+        for j in range(2, count + 1):
             scope = self._scope({**bound, **self._onward(scope, j)})
-        return scope.name(f"next({s})")
+        root, target = scope.name(f"next({s})"), f"target({s})"
+        if count == 1 or not self.moving(s):
+            return root
+        g = self.graph
+        return g.add("add", root, g.add("sub", self._scope({}).name(target), scope.name(target)))
 
     def _onward(self, scope: Scope, step: int) -> dict[str, int]:
         """Gates that names stand for at a step, from those of the step before."""
@@ -426,12 +433,12 @@ class Obligations:
         cells, inside, _ = self._cells(self.stance.states[state or self.state])
         return cells[0], inside
 
-    def change(self, held: str, steps: int = 1) -> Fraction:
-        """Upper end of how far a held quantity moves in so many steps, at most the width of its range."""
+    def change(self, held: str) -> Fraction:
+        """Upper end of how far a held quantity moves in one step, at most the width of its range."""
         quantity = self.claim.uncertain[held]
         low, high = self._occurs(quantity)
         moved = constant(quantity.change, self.claim.values)[1] if quantity.change is not None else Fraction(0)
-        return min(high - low, moved * steps)
+        return min(high - low, moved)
 
     def _outer(self, given: Range) -> Ends:
         return constant(given.lower, self.claim.values)[0], constant(given.upper, self.claim.values)[1]

@@ -182,7 +182,7 @@ class Attempt:
         miss = self.ranges.enclose(o.miss(steps=steps), None, True, points=False, gap=COARSE)
         if slope is None or miss is None or moves is None:
             return None
-        concludes = {"gain": upward(slope.size), "residual": upward(miss.size + self._moved(moves, steps))}
+        concludes = {"gain": upward(slope.size), "residual": upward(miss.size + self._moved(moves))}
         uses = [slope.line, miss.line, *(m.line for m in moves)]
         return self.writer.theorem("slope", f"slope@{steps}", uses, concludes)
 
@@ -295,9 +295,8 @@ class Attempt:
         known = [m for m in found if m is not None]
         return known if len(known) == len(found) else None
 
-    def _moved(self, moves: list[Proved], steps: int = 0) -> Fraction:
-        lines = [self.writer.proof.lines[m.line] for m in moves]
-        return movement(self.writer.derivation, lines, steps or self.claim.horizon)
+    def _moved(self, moves: list[Proved]) -> Fraction:
+        return movement(self.writer.derivation, [self.writer.proof.lines[m.line] for m in moves])
 
     def _slope(self, domain: Domain, on: int, moves: list[Proved] | None) -> None:
         """Gain and residual of the slope route: proofs/slope.md."""

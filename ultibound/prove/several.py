@@ -279,21 +279,19 @@ class SeveralAttempt(Attempt):
         radius, rooms = to_float(ball.radius), [to_float(x) for x in self._rooms()]
         for j in range(1, self.claim.horizon):
             k = self._searched(f"slopes@{j}", ball, norm, COARSE, FEW).upper
-            far = k * radius + self._searched(f"misses@{j}", ball, norm, COARSE, FEW).upper + self._shift(norm, j)
+            far = k * radius + self._searched(f"misses@{j}", ball, norm, COARSE, FEW).upper + self._shift(norm)
             if j == 1 and far <= radius * SPARE:
                 return True
             if not all(far * to_float(norm.support(i)) <= room * SPARE for i, room in enumerate(rooms)):
                 return False
         return True
 
-    def _shift(self, norm: Metric, steps: int = 0) -> float:
-        """How far held quantities move the target in so many steps, in a norm (an estimate)."""
+    def _shift(self, norm: Metric) -> float:
+        """How far held quantities move the target in a step, in a norm (an estimate)."""
         far = dict.fromkeys(self.obligations.states, 0.0)
         for s, h in moves_of(self.writer):
             found = self.ranges.search(self.obligations.target_slope(h, s), True, COARSE)
-            far[s] += max(abs(found.upper), abs(found.lower)) * to_float(
-                self.obligations.change(h, steps or self.claim.horizon)
-            )
+            far[s] += max(abs(found.upper), abs(found.lower)) * to_float(self.obligations.change(h))
         return to_float(norm.length([Fraction(x) for x in far.values()]))
 
     def _movements(self) -> list[int] | None:
@@ -350,7 +348,7 @@ class SeveralAttempt(Attempt):
         w, far = self.writer, dict.fromkeys(self.obligations.states, Fraction(0))
         for (s, h), n in zip(moves_of(w), moves, strict=True):
             ends = w.proof.lines[n].concludes
-            far[s] += max(abs(ends["lower"]), abs(ends["upper"])) * w.derivation.change(h, steps or self.claim.horizon)[1]
+            far[s] += max(abs(ends["lower"]), abs(ends["upper"])) * w.derivation.change(h)[1]
         residual = w.proof.lines[misses[0]].concludes["norm"] + self.norm.length(list(far.values()))
         concludes = {"gain": upward(w.proof.lines[slopes[0]].concludes["norm"]), "residual": upward(residual)}
         name = f"slope@{steps}" if steps else "slope"
