@@ -135,14 +135,17 @@ class Attempt:
         domain = Domain("region" if region is not None else "ball", radius, ends, beyond)
         on = ball if region is None else region
         moves = self._moves()
-        way, through = self._course(domain, ball, on, lambda j: self._early(j, domain, on, moves))
+        most = min(target.lower - w.derivation.region()[1][0], w.derivation.region()[1][1] - target.upper)
+        way, through = self._course(domain, ball, on, lambda j: self._early(j, domain, on, moves), most)
         for number in range(1, len(o.motion.positive) + 1 if o.motion is not None else 1):
             self.ranges.enclose(o.support(number, through), way, gap=DECIDED, side=-1)
         self._growth(domain, on)
-        self._slope(domain, on, moves)
-        self._split(domain, on, moves)
+        lost = way == on == ball and self.claim.horizon > 1  # steps within a horizon may leave the region
+        if not lost:
+            self._slope(domain, on, moves)
+            self._split(domain, on, moves)
         if radius > 0:
-            self._curve(domain, on, moves)
+            self._curve(domain, on, moves, lost)
         invariant = region or self._invariant_ball(ball)
         if invariant is not None:
             for pair in self.pairs.values():
@@ -154,7 +157,7 @@ class Attempt:
                 self._range(number, through, way, domain, on)
 
     def _course(
-        self, domain: Domain, ball: int, on: int, early: Callable[[int], int | None]
+        self, domain: Domain, ball: int, on: int, early: Callable[[int], int | None], most: Fraction
     ) -> tuple[int, Domain]:
         """The steps within a horizon, and where they may lead from the set: proofs/horizon.md (2)."""
         uses = [ball]
@@ -163,7 +166,8 @@ class Attempt:
             if step is None:
                 break
             uses.append(step)
-            if domain.kind == "region":
+            ends = self.writer.proof.lines[step].concludes
+            if domain.kind == "region" or ends["gain"] * domain.radius + ends["residual"] > most:
                 break
             try:
                 course = self.writer.theorem("course", "course", uses, {})
@@ -326,8 +330,8 @@ class Attempt:
             uses = [p.line for p in (slope, residual, *moves)]
             self.pairs[route] = self.writer.theorem(route, route, uses, concludes)
 
-    def _curve(self, domain: Domain, on: int, moves: list[Proved] | None) -> None:
-        """Shells of the error curve, the line above them and the sharp bound: proofs/curve.md."""
+    def _curve(self, domain: Domain, on: int, moves: list[Proved] | None, lost: bool) -> None:
+        """Shells of the error curve, the line above them and the sharp bound: proofs/curve.md. A smaller ball to try."""
         o, w, claim = self.obligations, self.writer, self.claim
         cells = prod(len(v.cells) for v in o.slope(domain).variables)
         if moves is None or (cells > MOST_ROUGH and not self.sharp):  # over so many even a rough curve would cost more
@@ -340,6 +344,8 @@ class Attempt:
             kept = profile.largest_kept(SPARE)
             if kept is not None and self.within is None and kept < 0.995 * to_float(outermost):
                 self.smaller = Fraction(f"{kept:.4g}")
+        if lost:
+            return
 
         def level(rho: Fraction) -> float:
             if not self.sharp:
