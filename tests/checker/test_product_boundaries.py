@@ -279,6 +279,11 @@ def others() -> None:
     d = region()
     grown(d, [at()], 2, "1/2", uses=[4])
     reject("a product over another set", d.found("region", [("gain < 1", "proved")], PLAIN), "proof", "line 11 serves no later line and no result")
+    for top, reason in (("", ""), ("horizon = 1\n", ""), ("horizon = 2\n", "products are known for single steps only")):
+        d = ball(["gain < 1/4"], step=("x/2", "y/2"), top=top)
+        grown(d, [{"x": "0", "y": "0"}], 1, "1/2", [4])
+        entries = d.found(None, [("gain < 1/4", "refuted")], PLAIN)
+        accept(f"a product, {top!r}", entries) if not reason else reject(f"a product, {top!r}", entries, "proof line 5", reason)
     d = rounding_lines()
     d.line("product", "slopes", [9, 1], {"bits": 24, "points": [{"x": "0", "y": "0", "p": "0", "q": "0"}], "power": 1}, lower="3/8")
     entries = d.found("region", [("settles", "proved")], {"kind": "box", "weights": {"x": "1", "y": "2"}})

@@ -12,7 +12,7 @@ from typing import Any
 from ..bounding.evaluate import to_float
 from ..checker.courses import nearest
 from ..checker.derive import Ranged
-from ..checker.jacobians import Table, inside, middle_and_half
+from ..checker.jacobians import Table, inside, middle_and_half, named
 from ..checker.matrices import Leaf, Matrix, Metric, norm_over, root
 from ..checker.numerals import decimal_down, decimal_up
 from ..checker.periodic import Round, variables_of
@@ -87,8 +87,7 @@ class NormWriter(Writer):
     def exact(self, proves: str, on: int) -> bool:
         """Whether exact rational arithmetic can carry all entries of a matrix, and is worth it."""
         d, domain = self.derivation, self.proof.lines[on].domain
-        columns = d.states if proves == "slopes" else ("",)
-        names = [f"slope[{s},{x}]" if x else f"target-miss[{s}]" for s in d.states for x in columns]
+        names = [name for row in named(d, proves) for name in row]
         below = {k for name in names for k in d.terms.below(d.meaning(name, domain).root)}
         cells = 1
         for name in names:
@@ -155,9 +154,7 @@ class NormWriter(Writer):
     def _moves(self, proves: str, on: int) -> bool:
         """Whether a matrix rests on the flow of the stance."""
         d, domain = self.derivation, self.proof.lines[on].domain
-        columns = d.states if proves == "slopes" else ("",)
-        names = [f"slope[{s},{x}]" if x else f"target-miss[{s}]" for s in d.states for x in columns]
-        return any(self._flow(d.meaning(name, domain).root) for name in names)
+        return any(self._flow(d.meaning(name, domain).root) for row in named(d, proves) for name in row)
 
     def stretch(self, proves: str, point: dict[str, Fraction], direction: Sequence[float], bits: int, on: int) -> int:
         """The norm surely taken at a point; raises checker.rules.Rejected where the point is not in the set."""
@@ -173,7 +170,7 @@ class NormWriter(Writer):
         middle, half = middle_and_half(table.at(at))
         image = [sum((x * y for x, y in zip(row, vector, strict=True)), Fraction(0)) for row in middle]
         off = [sum((x * abs(y) for x, y in zip(row, vector, strict=True)), Fraction(0)) for row in half]
-        scale = norm.most(vector) if proves == "slopes" else abs(vector[0])
+        scale = norm.most(vector) if proves.startswith("slopes") else abs(vector[0])
         lower = (norm.least(image) - norm.length(off)) / scale
         witness = {"bits": bits, "at": at, "direction": [str(x) for x in vector]}
         uses = [on, *([self.flow] if self.flow is not None and self._moves(proves, on) else [])]
@@ -210,10 +207,11 @@ class NormWriter(Writer):
         course = Round(d, witness, used[-1].flows)
         states = course.follow()
         ends = [max(b[1] - a[0], a[1] - b[0]) for a, b in zip(states[0], states[-1], strict=True)]
-        near = domain.length(ends) / (1 - k ** len(course.values))
+        n = d.statement.horizon
+        near = domain.length(ends) / (1 - k ** (len(course.values) // n))
         concludes = {}
         for i, s in enumerate(d.states):
-            errs = [(x[i][0] - course.centre[i][1], x[i][1] - course.centre[i][0]) for x in states[:-1]]
+            errs = [(x[i][0] - course.centre[i][1], x[i][1] - course.centre[i][0]) for x in states[:-1:n]]
             concludes[s] = downward(max(map(nearest, errs)) - domain.support(i) * near)
         return self.append("periodic", "periodic", uses, witness, concludes)
 

@@ -29,9 +29,8 @@ class SeveralResults(Results):
         self.metric: Metric = balls[0].domain.metric
         if self.domain is None or self.domain.metric != self.metric:
             raise Rejected("the ball and the invariant set are of different metrics")
-        self.lasting = self.derivation.motion is None or self.above(1)  # else points are of no stance
-        self.unsupported = 0 if self.lasting else 1
-        self.settled = invariant is not None and self.supported()
+        self.way = self.on_the_way()
+        self.supported_from(invariant)
         self.partial = not self.settled and (ball.rule == "smaller-ball" or invariant is not None or not self.lasting)
         self.centres = {s: Span(*x) for s, x in zip(self.states, balls[0].domain.targets, strict=True)}
         self.radius = Span(ball.concludes["radius"], ball.concludes.get("outer"))
@@ -41,11 +40,12 @@ class SeveralResults(Results):
         self.growth, self.everywhere = self.grown()
         self.routes = {} if self.partial or self.one("slope", "slope") is None else {"slope": self.of_slope()}
         self.reported = "slope"
-        route = self.routes.get("slope", Route())
-        self.gain, self.residual, self.bound = self.slopes(route.gain), route.residual, route.bound
         self.best = self.sharp = None
         self.orbits = {s: self.farthest(s) for s in self.states}
         self.bounds = self.bounds_by_state()
+        self.lift(self.within())
+        route = self.routes.get("slope", Route())
+        self.gain, self.residual, self.bound = self.slopes(route.gain), route.residual, route.bound
         self.push = None
         self.pushes = {s: self.pushed_along(s) for s in self.states}
         self.radii = {s: self.radius_along(s) for s in self.states}
@@ -118,12 +118,22 @@ class SeveralResults(Results):
         found: dict[str, Fraction] = {}
         for i, s in enumerate(self.states):
             each = [(line.concludes[s], n) for n, line in lines]
-            if self.bound is not None and self.bound.upper is not None:
-                each.append((self.bound.upper * self.metric.support(i), 0))
+            if (bound := self.in_norm()) is not None:
+                each.append((bound * self.metric.support(i), 0))
             if each:
                 found[s], number = min(each)
                 self.needed.update([number] if number else [])
         return found
+
+    def in_norm(self) -> Fraction | None:
+        """The bound of the route itself."""
+        bound = self.routes.get("slope", Route()).bound
+        return None if bound is None else bound.upper
+
+    def lift(self, least: Fraction | None) -> None:
+        super().lift(least)
+        if self.settled and least is not None and not self.phased(least):
+            self.bounds = {s: self.metric.support(i) * self.lifted(least) for i, s in enumerate(self.states)}
 
     def farthest(self, s: str) -> Fraction | None:
         """How far a periodic orbit surely takes a state, again and again: proofs/several.md (6)."""
@@ -136,7 +146,7 @@ class SeveralResults(Results):
 
     def within(self) -> Fraction | None:
         """The least bound in the metric's norm."""
-        each = [] if self.bound is None or self.bound.upper is None else [self.bound.upper]
+        each = [] if (bound := self.in_norm()) is None else [bound]
         if len(self.bounds) == len(self.states):
             each.append(self.metric.length([self.bounds[s] for s in self.states]))
         return min(each, default=None)
@@ -241,7 +251,7 @@ class SeveralResults(Results):
         most: int | None = None
         if self.settled and limit is not None and less(start[1], limit.lower, equal=True):
             wide = self.metric.support(i)
-            most = self.count("slope", start[1] * self.metric.unit(i)[1], end[0] / wide)
+            most = self.steps("slope", start[1] * self.metric.unit(i)[1], end[0] / wide)
         span = None if most is None else Span(None, Fraction(most))
         proved = most is not None and compared(r.relation, Span(None, Fraction(most)), c)
         return verdict(proved, False, span)

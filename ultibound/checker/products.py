@@ -35,6 +35,8 @@ def product(d: Derivation, proves: str, used: list[Line], witness: dict[str, Any
     used, flows = parted(used)
     if proves != "slopes" or len(used) != 1 or used[0].domain is None:
         raise Rejected("a product of slopes rests on the one line that gives the set")
+    if d.statement.horizon != 1:
+        raise Rejected("products are known for single steps only")
     domain, points, power = used[0].domain, witness["points"], witness["power"]
     if not isinstance(points, list) or not 0 < len(points) <= MOST_POINTS:
         raise Rejected(f"points: a list of 1 to {MOST_POINTS}")

@@ -29,6 +29,7 @@ SHAPES: dict[str, tuple[tuple[str, ...], tuple[str, ...] | None]] = {
     "smaller-ball": ((), ("radius",)),
     "invariant-region": ((), ()),
     "invariant-ball": ((), ()),
+    "course": ((), ()),
     "slope": ((), ("gain", "residual")),
     "split": ((), ("gain", "residual")),
     "shells": (("radii", "slope"), ()),

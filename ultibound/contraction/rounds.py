@@ -56,8 +56,8 @@ class Map:
         return self.run(at)
 
 
-def courses(step: Map, slack: float) -> list[Course]:
-    """For each state the course that takes it furthest; none where the map has no value."""
+def courses(step: Map, slack: float, horizon: int) -> list[Course]:
+    """For each state the course of whole horizons that takes it furthest; none where the map has no value."""
     found: dict[str, Course] = {}
     for held in step.held:
         centre = np.array(step.target(held))
@@ -71,21 +71,21 @@ def courses(step: Map, slack: float) -> list[Course]:
             continue
         for i, s in enumerate(step.states):
             for sign in (1.0, -1.0):
-                course = _followed(step, held, centre, i, _chosen(a, miss, i, sign))
+                course = _followed(step, held, centre, i, _chosen(a, miss, i, sign, horizon))
                 if course is not None and (s not in found or course.far > found[s].far * (1 + slack)):
                     found[s] = course
     return list(found.values())
 
 
-def _chosen(a: Floats, miss: Floats, i: int, sign: float) -> list[int]:
+def _chosen(a: Floats, miss: Floats, i: int, sign: float, horizon: int) -> list[int]:
     """The fresh choices of a round, first step first."""
     row, chosen = np.zeros(len(a)), list[int]()
     row[i] = sign
     first = float(np.abs(row).max())
-    for _ in range(LONGEST):
+    for n in range(1, -(-LONGEST // horizon) * horizon + 1):
         chosen.append(int(np.argmax(miss @ row)))
         row = row @ a
-        if not np.isfinite(row).all() or float(np.abs(row).max()) < FADED * first:
+        if n % horizon == 0 and not float(np.abs(row).max()) >= FADED * first:
             break
     return chosen[::-1]
 
