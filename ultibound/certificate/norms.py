@@ -6,6 +6,7 @@ import time
 from collections.abc import Mapping, Sequence
 from contextlib import suppress
 from fractions import Fraction
+from math import exp, log
 from typing import Any
 
 from ..bounding.evaluate import to_float
@@ -13,8 +14,9 @@ from ..checker.courses import nearest
 from ..checker.derive import Ranged
 from ..checker.jacobians import Table, inside, middle_and_half, named
 from ..checker.matrices import Leaf, Matrix, Metric, norm_over, root
-from ..checker.numerals import decimal_up
+from ..checker.numerals import decimal_down, decimal_up
 from ..checker.periodic import Round, variables_of
+from ..checker.products import traced
 from ..checker.reals import Undefined
 from ..checker.rules import Line, place
 from ..checker.several import compared, keyed, largest, movements
@@ -174,6 +176,20 @@ class NormWriter(Writer):
         uses = [on, *([self.flow] if self.flow is not None and self._moves(proves, on) else [])]
         return self.append("stretch", proves, uses, witness, {"lower": downward(lower)})
 
+    def product(self, points: Sequence[dict[str, Fraction]], power: int, bits: int, on: int, wanted: Fraction) -> None:
+        """Jacobians whose product shows a gain of `wanted` or more in any norm: no line where it shows less."""
+        domain = self.proof.lines[on].domain
+        if domain is None:
+            raise ValueError("no set")
+        table = Table(self.derivation, "slopes", domain, bits, self._flows())
+        at = [{v.name: spelled(v, p[v.name]) for v in table.variables} for p in points]
+        lower = root_of(traced(table, at, power) / len(self.derivation.states), power * len(at))
+        if not lower >= wanted:
+            return
+        uses = [on, *([self.flow] if self.flow is not None and self._moves("slopes", on) else [])]
+        witness = {"bits": bits, "points": at, "power": power}
+        self.append("product", "slopes", uses, witness, {"lower": decimal_down(lower, DIGITS)})
+
     def periodic(self, start: Sequence[float], held: Mapping[str, Fraction], steps: Sequence[Mapping[str, Fraction]],
                  uses: list[int], bits: int) -> int:  # fmt: skip
         """A periodic orbit near a start; raises checker.rules.Rejected, checker.reals.Undefined where none is shown."""
@@ -224,6 +240,15 @@ def spelled(v: Ranged, x: Fraction) -> str:
     if v.listed:
         return f"#{next((k for k, c in enumerate(v.cells) if c[0] <= x <= c[1]), 0)}"
     return str(min(max(x, v.inside[0]), v.inside[1]))
+
+
+def root_of(x: Fraction, degree: int) -> Fraction:
+    """A number whose power of that degree is at most x >= 0, to about fourteen digits."""
+    if not x > 0:
+        return Fraction(0)
+    guess = Fraction(f"{exp((log(x.numerator) - log(x.denominator)) / degree):.15g}")
+    tried = (guess * (1 - Fraction(share, 10**15)) for share in (0, 1, 10, 100, 1000))
+    return next((y for y in tried if y**degree <= x), Fraction(0))
 
 
 def moves_of(writer: Writer) -> list[tuple[str, str]]:

@@ -7,7 +7,7 @@ from typing import Any
 
 from .grammar import constant
 from .matrices import Metric, dot
-from .results import NOTHING, Outcome, Results, Route, Span, compared, less, opposed, verdict
+from .results import NOTHING, Outcome, Results, Route, Span, compared, greater, less, opposed, verdict
 from .rules import Proof, Rejected
 
 
@@ -37,6 +37,7 @@ class SeveralResults(Results):
         self.edge, self.orbit, self.room, self.missed = self.radius.upper, None, None, None
         self.kind, self.whole = self.set_found(invariant if self.settled else None, ball)
         self.edges = {s: self.reached(s) for s in self.states if self.kind == "region"}
+        self.growth, self.everywhere = self.grown()
         self.routes = {} if self.partial or self.one("slope", "slope") is None else {"slope": self.of_slope()}
         self.reported = "slope"
         self.best = self.sharp = None
@@ -80,7 +81,7 @@ class SeveralResults(Results):
         line = self.one("slope", "slope")
         if line is None or line.domain != self.domain:
             raise Rejected("gain and residual of slope refer to another set")
-        k, least = self.stretched("slopes"), self.stretched("misses")
+        k, least = greater(self.stretched("slopes"), self.growth), self.stretched("misses")
         gain, residual = Span(k, line.concludes["gain"]), Span(least, line.concludes["residual"])
         bounded = self.one("ultimate-bound", "bound[slope]")
         if bounded is None:
@@ -96,6 +97,16 @@ class SeveralResults(Results):
             return None
         self.needed.add(max(found)[1])
         return max(max(found)[0], Fraction(0))
+
+    def grown(self) -> tuple[Fraction | None, bool]:
+        """proofs/several.md (7): the gain that a product of Jacobians shows in any norm, and whether in any set too."""
+        lines = [x for x in self.lines("product", "slopes") if self.lasting and x[1].domain == self.domain]
+        found = [(x.concludes["lower"], not x.on_set or self.kind == "region", n) for n, x in lines]
+        if not found:
+            return None, False
+        lower, everywhere, number = max(found)
+        self.needed.add(number)
+        return lower, everywhere
 
     def bounds_by_state(self) -> dict[str, Fraction]:
         """proofs/several.md (2), (3): the least bound of each state, by the norm and by comparison."""
@@ -195,10 +206,13 @@ class SeveralResults(Results):
         # a length says nothing in a norm that may be as small as one likes; a gain is the same in any unit
         proved = self.whole and compared(r.relation, upper, c) and (r.kind == "gain" or self.meant())
         # in a metric the claim fixes, what is surely taken settles it; in another norm it might be less
-        final = self.stated() and not self.any and r.kind != "bound" and found is not None
-        # nor is another route's gain, told apart from a correction, known from here
-        final &= r.kind != "gain" or self.statement.route == "slope" or not self.statement.correction
-        return verdict(proved, final and opposed(r.relation, Span(None, found.lower if found else None), c), found)
+        least = found.lower if found is not None and self.stated() and r.kind != "bound" else None
+        if r.kind == "gain" and found is not None:
+            if self.everywhere:
+                least, found = greater(least, self.growth), Span(greater(found.lower, self.growth), found.upper)
+            # nor is another route's gain, told apart from a correction, known from here
+            least = least if self.statement.route == "slope" or not self.statement.correction else None
+        return verdict(proved, not self.any and opposed(r.relation, Span(None, least), c), found)
 
     def long_run(self, s: str) -> Span | None:
         """How far a state can be in the long run: taken by an orbit, and proved."""

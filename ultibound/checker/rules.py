@@ -45,6 +45,7 @@ SHAPES: dict[str, tuple[tuple[str, ...], tuple[str, ...] | None]] = {
     "componentwise": (("b", "p"), None),  # one a state
     "invariant-rows": ((), ()),
     "periodic": (("bits", "held", "start", "steps"), None),  # one a state
+    "product": (("bits", "points", "power"), ("lower",)),
 }
 
 

@@ -14,9 +14,10 @@ from .jacobians import Table, middle_and_half
 from .matrices import Leaf, Matrix, Metric, comparison, entries, metric, norm_at_most
 from .numerals import Rejected, quantity
 from .periodic import periodic
+from .products import product
 from .theorems import Line, Quantities, fewer, magnitude, parted, require
 
-OWN = ("metric", "matrix", "entries", "stretch", "componentwise", "invariant-rows", "periodic")
+OWN = ("metric", "matrix", "entries", "stretch", "componentwise", "invariant-rows", "periodic", "product")
 KEPT = 5000  # leaves in memory
 
 
@@ -103,10 +104,7 @@ def concluded(
 ) -> Line | None:
     """A line of a rule that is about several states; None where the rule is another's."""
     several, line = len(d.states) > 1, Line(rule, proves, (), claimed)
-    if (
-        rule in ("metric", "matrix", "entries", "stretch", "componentwise", "invariant-rows", "periodic")
-        and not several
-    ):
+    if rule in OWN and not several:
         raise Rejected(f"{rule}: the claim has a single state")
     if rule == "metric":
         return replace(line, metric=stated(d, proves, used, witness))
@@ -119,6 +117,8 @@ def concluded(
         return replace(line, domain=componentwise(d, proves, used, witness, claimed))
     if rule == "periodic":
         return replace(line, domain=periodic(d, proves, used, witness, claimed))
+    if rule == "product":
+        return product(d, proves, used, witness, claimed)
     if rule == "invariant-rows":
         return replace(line, domain=invariant_rows(d, proves, used, claimed))
     if several and rule in ("largest-ball", "smaller-ball"):

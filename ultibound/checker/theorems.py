@@ -190,7 +190,9 @@ def course(d: Derivation, proves: str, used: list[Line], claimed: Quantities) ->
         return ball
     if len(used) < n:
         raise Rejected("the first step does not keep the ball, and of later ones nothing is shown")
-    ends = [tuple(x.concludes["gain"] * r + x.concludes["residual"] for r in (ball.radius, ball.outer)) for x in used[1:]]
+    ends = [
+        tuple(x.concludes["gain"] * r + x.concludes["residual"] for r in (ball.radius, ball.outer)) for x in used[1:]
+    ]
     radius, outer = (max(x) for x in zip((ball.radius, ball.outer), *ends, strict=True))
     for i, s in enumerate(d.states):
         low, high = ball.targets[i] if ball.targets else ball.target

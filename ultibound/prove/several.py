@@ -24,11 +24,12 @@ from ..checker.reals import Undefined
 from ..checker.rules import Rejected
 from ..claim import ClaimError
 from ..claim.constants import constant
-from ..claim.obligations import RANGED, Domain, Obligation, together
+from ..claim.obligations import RANGED, Domain, Obligation, Variable, together
 from ..contraction.metrics import Proposal, proposals
 from ..contraction.norms import Matrices, Norm, Stretched, stretched
-from ..contraction.rounds import Map, courses
-from ..contraction.samples import drawn
+from ..contraction.rounds import MOST_HELD, Map, courses
+from ..contraction.samples import combinations, drawn
+from ..contraction.words import Word, fastest
 from .one import COARSE, DECIDED, Attempt
 
 if TYPE_CHECKING:
@@ -80,6 +81,7 @@ class SeveralAttempt(Attempt):
         lost = way == on == ball and self.claim.horizon > 1  # steps within a horizon may leave the region
         slopes, misses = (None, None) if lost else (self._norm("slopes", on), self._norm("misses", on))
         pair = self._contraction(slopes, misses, moves)
+        self._growing(on, pair)
         tables = self._entries(slopes, misses, on)
         invariant = on if images is not None else self._kept(ball, pair, tables, moves)
         if invariant is not None and pair is not None:
@@ -249,7 +251,9 @@ class SeveralAttempt(Attempt):
             self.watch(f"{proves} of {len(self.obligations.states)} states", leaves, high)
 
         matrices = self._matrices(proves, domain, norm)
-        form = Norm(floats(norm.rows), floats(norm.inverse) if proves.startswith("slopes") else None, norm.kind == "ellipsoid")
+        form = Norm(
+            floats(norm.rows), floats(norm.inverse) if proves.startswith("slopes") else None, norm.kind == "ellipsoid"
+        )
         effort = Effort(gap, cells, self.ranges.until - self.ranges.spent, watch, later=later)
         try:
             return stretched(matrices, form, effort, enough)
@@ -357,6 +361,43 @@ class SeveralAttempt(Attempt):
         concludes = {"gain": upward(w.proof.lines[slopes[0]].concludes["norm"]), "residual": upward(residual)}
         name = f"slope@{steps}" if steps else "slope"
         return w.append("slope", name, [slopes[0], misses[0], *moves], {}, concludes)
+
+    def _growing(self, on: int, pair: int | None) -> None:
+        """A product of Jacobians that refutes a gain in every norm: proofs/several.md (7)."""
+        upper = self.writer.proof.lines[pair].concludes["gain"] if pair is not None else None
+        asked = [
+            constant(r.constant, self.claim.values)[1]
+            for n, r in enumerate(self.claim.requirements, 1)
+            if r.kind == "gain" and r.constant is not None and (n == self.variant if self.variant else not r.over)
+        ]
+        wanted = min((c for c in asked if upper is None or upper >= c), default=None)
+        if wanted is None or self.ranges.interrupted or self.claim.horizon > 1:
+            return
+        matrices = self._matrices("slopes", self.domain, self.norm)
+        bits = 0 if self.writer.exact("slopes", on) else BITS
+        best: tuple[Word, list[dict[str, Fraction]]] | None = None
+        for points in self._places(matrices.variables):
+            at = np.array([[to_float(p[v.name]) for v in matrices.variables] for p in points])
+            jacobians = matrices.at(at.reshape(len(points), -1))
+            good = np.flatnonzero(np.isfinite(jacobians).all(axis=(1, 2)))
+            found = fastest(floats(self.norm.rows) @ jacobians[good] @ floats(self.norm.inverse))
+            if found is not None and (best is None or found.rate > best[0].rate):
+                best = found, [points[int(good[k])] for k in found.letters]
+        if best is not None and best[0].rate >= to_float(wanted) * SPARE:
+            with suppress(Undefined, Rejected):
+                self.writer.product(best[1], best[0].power, bits, on, wanted)
+
+    def _places(self, variables: list[Variable]) -> Iterator[list[dict[str, Fraction]]]:
+        """Points of W, each with the same held values; the states anywhere in a region, else at their targets."""
+        rng, states = np.random.default_rng(0), self.obligations.states
+        centres = {s: (t.lower + t.upper) / 2 for s, t in zip(states, self.targets, strict=True)}
+        centres |= {f"error({s})": Fraction(0) for s in states}
+        met = [v.name for v in variables]
+        still = {} if self.domain.kind == "region" else {n: x for n, x in centres.items() if n in met}
+        held = {n for n, q in self.claim.uncertain.items() if q.held}
+        fresh = combinations([v for v in variables if v.name not in held and v.name not in still], rng)
+        for same in combinations([v for v in variables if v.name in held], rng)[:MOST_HELD]:
+            yield [still | same | each for each in fresh]
 
     def _entries(
         self, slopes: tuple[int, tuple[str, ...], int] | None, misses: tuple[int, tuple[str, ...], int] | None, on: int
