@@ -111,6 +111,27 @@ gap = 0.02
 """
 
 
+GROWING = """
+format = 1
+[state]
+x = [-1, 1]
+y = [-1, 1]
+[uncertain]
+q = { values = [0, 1] }
+h = { range = [0, 0.1], held = true, change = 0.01 }
+[next]
+x = "h + (x - h + q*sin(y))/1.3"
+y = "((1 - q)*(x - h) + y)/1.3"
+[target]
+x = "h"
+y = 0
+[[require]]
+that = "gain < 1"
+[effort]
+gap = 0.1
+"""
+
+
 def stances() -> str:
     """A stance over two cells of a library, with a gust, a push and a limit throughout."""
     return stance(
@@ -124,8 +145,8 @@ def stances() -> str:
 def sample(name: str) -> dict[str, Any]:
     if name == "stance":
         return proved(stances(), data={"gaits.csv": GAITS}).entries
-    if name in ("split", "over"):
-        return proved(SPLIT if name == "split" else OVER).entries
+    if name in ("split", "over", "growing"):
+        return proved({"split": SPLIT, "over": OVER, "growing": GROWING}[name]).entries
     if name == "several":
         text = (EXAMPLES / "recentring.toml").read_text().replace("[0.36, 0.42]", "[0.38, 0.40]")
         return proved(text + "[effort]\ngap = 0.1\n").entries
@@ -207,6 +228,7 @@ def lines_checked_once() -> Iterator[None]:
         "over",
         "stance",
         "several",
+        "growing",
     ],
 )
 def entries(request: pytest.FixtureRequest) -> dict[str, Any]:

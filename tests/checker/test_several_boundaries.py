@@ -960,8 +960,8 @@ def over_ranges() -> None:
             reject(f"over: line {n} rests on the claim's own", own, f"proof line {n}", "uses: lines about other ranges")
 
 
-def rounding_of_stances() -> None:
-    """X and Y stand still for a second; their start is the first map."""
+def rounding_lines() -> Lines:
+    """X and Y stand still for a second; their start is the first map. Lines: 1 flow, 2 to 19 as of `region`, 20 support."""
     still = {"cuts": {}, "pieces": ["0", "1"], "degrees": [1, 0], "bits": 24, "cells": [["16777216 0 0 0 0 0 16777216 0"]]}
     assert STILL["degrees"] == still["degrees"]
     rest = STATED + f'\n[dynamics]\nduration = 1\n[dynamics.start]\nX = "{PAIR[0]}"\nY = "{PAIR[1]}"\n[dynamics.rate]\nX = "0*Y"\nY = "0*X"\n'
@@ -976,7 +976,11 @@ def rounding_of_stances() -> None:
         proof.append(new)
     proof.append({"rule": "range", "proves": "support[1]", "uses": [9], "witness": {"bits": 0, "trees": ["d"]}, "concludes": {"lower": "1", "upper": "1"}})
     d.proof = proof
-    entries = d.found("region", [("settles", "proved")], BOX)
+    return d
+
+
+def rounding_of_stances() -> None:
+    entries = rounding_lines().found("region", [("settles", "proved")], BOX)
     judged("a stance of two states", entries)
     exact("a stance of two states", entries, {"gain": ("3/4", "3/4"), "residual": ("1/8", "1/8"), "bound": ("1/2", "1/2"), "states x bound": (None, "7/20"), "states y radius": ("1", "1")})
     accept("a stance that may be short", but(entries, "proof 19 concludes lower", hair("0", 1)))

@@ -5,6 +5,7 @@ from __future__ import annotations
 from dataclasses import dataclass
 
 from ..checker.results import Outcome, Results
+from ..checker.theorems import Line
 from ..claim import Claim
 from ..claim.constants import constant
 from ..claim.model import Requirement
@@ -42,6 +43,10 @@ class SeveralRemarks:
             )
             parts += [f"{n}: {STOPS.get(x, x)}" for n in names if (x := self.limits.get(n, ""))]
             parts.append("interrupted" if self.interrupted else self.why(r))
+        lines = self.results.proof.lines
+        growing = [x for x in lines.values() if x.rule == "product" and x.variant == (number if r.over else 0)]
+        if outcome.verdict == "refuted" and r.kind == "gain" and growing:
+            parts.append(f"whatever the norm: {_grows(growing[0])}")
         return ("; ".join(p for p in parts if p)[:900] or None), pursue
 
     def why(self, r: Requirement) -> str:
@@ -77,3 +82,9 @@ class SeveralRemarks:
         low, high = constant(r.constant, self.claim.values)
         least, most = outcome.value.lower, outcome.value.upper
         return least is not None and most is not None and least <= high and low <= most and least < most
+
+
+def _grows(line: Line) -> str:
+    """What a product of Jacobians shows, in words."""
+    at = "somewhere in the region" if line.on_set else "at the target"
+    return f"Jacobians {at}, one after the other, grow on average by {float(line.concludes['lower']):.7g} a step"

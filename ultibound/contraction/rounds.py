@@ -72,8 +72,8 @@ class Map:
         return np.array(rows).reshape(len(fresh), len(names))
 
 
-def courses(step: Map, slack: float) -> list[Course]:
-    """For each state the course that takes it furthest; none where the map has no value."""
+def courses(step: Map, slack: float, horizon: int) -> list[Course]:
+    """For each state the course of whole horizons that takes it furthest; none where the map has no value."""
     tried = list[Trial]()
     for held in step.held:
         centre = np.array(step.target(held))
@@ -87,7 +87,7 @@ def courses(step: Map, slack: float) -> list[Course]:
             continue
         for i in range(len(step.states)):
             for sign in (1.0, -1.0):
-                chosen = tuple(step.fresh[k] for k in _chosen(a, miss, i, sign))
+                chosen = tuple(step.fresh[k] for k in _chosen(a, miss, i, sign, horizon))
                 tried.append(Trial(held, centre, i, chosen))
     found: dict[str, Course] = {}
     for trial, course in zip(tried, _followed(step, tried), strict=True):
@@ -97,15 +97,15 @@ def courses(step: Map, slack: float) -> list[Course]:
     return list(found.values())
 
 
-def _chosen(a: Floats, miss: Floats, i: int, sign: float) -> list[int]:
+def _chosen(a: Floats, miss: Floats, i: int, sign: float, horizon: int) -> list[int]:
     """The fresh choices of a round, first step first."""
     row, chosen = np.zeros(len(a)), list[int]()
     row[i] = sign
     first = float(np.abs(row).max())
-    for _ in range(LONGEST):
+    for n in range(1, -(-LONGEST // horizon) * horizon + 1):
         chosen.append(int(np.argmax(miss @ row)))
         row = row @ a
-        if not np.isfinite(row).all() or float(np.abs(row).max()) < FADED * first:
+        if n % horizon == 0 and not float(np.abs(row).max()) >= FADED * first:
             break
     return chosen[::-1]
 
