@@ -175,17 +175,19 @@ def lines_checked_once() -> Iterator[None]:
     a change is."""
     known: dict[str, tuple[Line | Rejected, int]] = {}
     claims: dict[str, Statement] = {}
+    names: dict[int, str] = {}  # of claims that are kept
     real, reading = Proof.add, ultibound.checker.read_statement
 
     def read(text: str, settings: dict[str, str], files: dict[str, str]) -> Statement:
         key = json.dumps([text, settings, files])
         if key not in claims:
             claims[key] = reading(text, settings, files)
+            names[id(claims[key])] = key
         return claims[key]
 
     def add(proof: Proof, raw: Any) -> None:
         if not proof.lines:
-            claim = repr(proof.derivation.statement)
+            claim = names.get(id(proof.derivation.statement)) or repr(proof.derivation.statement)
             proof.history = hashlib.sha256(claim.encode())  # type: ignore[attr-defined]  # a note of the test's own
         digest_ = getattr(proof, "history", None)
         if digest_ is None:  # lines in the making
