@@ -41,7 +41,7 @@ class SeveralResults(Results):
         self.routes = {} if self.partial or self.one("slope", "slope") is None else {"slope": self.of_slope()}
         self.reported = "slope"
         route = self.routes.get("slope", Route())
-        self.gain, self.residual, self.bound = self.slopes(route.gain), route.residual, route.bound
+        self.gain, self.residual, self.bound = self.slopes("slope"), route.residual, route.bound
         self.best = self.sharp = None
         self.orbits = {s: self.farthest(s) for s in self.states}
         self.bounds = self.bounds_by_state()
