@@ -39,7 +39,7 @@ PROOFS = (
     "reals",
     "names",
 )
-STANCES = ("calculus", "motion", "models", "rates", "flows")
+STANCES = ("calculus", "motion", "signals", "models", "rates", "flows")
 NORMS = ("matrices",)
 SEVERAL = ("jacobians", "several", "outcomes", "periodic")
 READING = ("grammar", "numerals", "statement", "tables", "scope", "command")

@@ -467,13 +467,11 @@ def blown(rng: random.Random) -> Walk:
 
 
 def fading(rng: random.Random) -> Walk:
-    """One continuous state that fades the faster the more it is off, and two signals that the state weighs."""
-    gust, slip = Quantity(-0.3, 0.5, within=True), Quantity(-0.2, 0.2, within=True)
-    return Walk(
-        (-0.3, 1.1), {"T": Quantity(0.48, 0.5), "v_cmd": Quantity(0.4, 0.45, held=True), "gust": gust, "slip": slip}, {}, {"y": "v"},
-        {"y": f"-({num(rng.uniform(2, 4))} + v)*(1 + t)*(y - v_cmd) + (1 + 3*v*t)*gust + (2 + v*(1 - 5*t))*slip"},
-        "T", "0.5*v_cmd + 0.5*y", "v_cmd",
-    )  # fmt: skip
+    """One continuous state, and a signal that the state weighs: more early in the stance, less late, or the other way."""
+    gust = Quantity(-0.2, 0.3, within=True)
+    rate = f"(1.5 + {num(rng.uniform(1, 3))}*v*(t - 0.2))*gust"
+    uncertain = {"T": Quantity(0.4, 0.41), "v_cmd": HELD, "gust": gust}
+    return Walk((-0.3, 1.1), uncertain, {}, {"y": "0.2*v"}, {"y": rate}, "T", "0.8*v_cmd + y", "v_cmd")
 
 
 def swayed(rng: random.Random) -> Walk:
@@ -538,6 +536,5 @@ def test_no_course_of_signals_parts_trajectories_faster_than_the_gain(kind: Call
                 after = [walk.landed({**values, "v": values["v"] + e}, phases, held)[0] for e in (0, ACROSS)]
                 constant = max(constant, float(np.max(np.abs(after[1] - after[0])) / ACROSS))
             jumps = {d: np.count_nonzero(np.diff(c, axis=0)) for d, c in courses.items()}
-            assert sum(jumps.values()) > 0 or number == 2, "no course that is not constant was tried"
-        print(kind.__name__, seed, "k", least, k, "worst", most, "constant", constant)
+            assert sum(jumps.values()) > 0 or number == 2 or kind is swayed, "no course that is not constant was tried"
         assert constant <= k and k <= 1.15 * max(most, least), (k, most)
