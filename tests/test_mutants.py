@@ -40,7 +40,7 @@ PROOFS = (
     "reals",
     "names",
 )
-STANCES = ("calculus", "motion", "models", "rates", "flows")
+STANCES = ("calculus", "motion", "signals", "models", "rates", "flows")
 NORMS = ("matrices",)
 SEVERAL = ("jacobians", "several", "outcomes", "periodic", "products")
 READING = ("grammar", "numerals", "statement", "tables", "scope", "command")

@@ -175,6 +175,9 @@ def test_both_lists_mean_the_same_stance(name: str, horizon: int) -> None:
         listed += [o.requirement(n, domain) for n, r in enumerate(claim.requirements, 1) if r.kind in RANGED]
         listed += [o.growth(domain)] if any(r.during for r in claim.requirements) else []
         listed += [o.split_slope(domain), o.split_residual(domain)] if claim.correction else []
+        routes = ("slope", "split")[: 2 if claim.correction else 1] if o.motion and o.motion.signals else ()
+        listed += [o.under_any_course(domain, parts, route) for route in routes for parts in (1, 3)]
+        assert [o.loose(route) for route in routes] == [d.loose(route) for route in routes]
         for obligation in listed:
             meaning = d.meaning(obligation.name, other_domain)
             assert [(v.name, v.cells, v.inside) for v in obligation.variables] == [

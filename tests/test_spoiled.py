@@ -142,7 +142,17 @@ def stances() -> str:
     )  # fmt: skip
 
 
+def courses() -> str:
+    """A gust whose effect the state weighs: what it does over any course is bounded part by part."""
+    return stance(
+        rates='y = "gust*(1 + v*(t - 0.5))"', start='y = "0.3*v"', duration="1", define="", state="[-0.5, 0.5]", step="y", target="0",
+        uncertain="gust = { range = [-0.1, 0.1], within = true }", requires=("gain < 0.35", "settles"),
+    )  # fmt: skip
+
+
 def sample(name: str) -> dict[str, Any]:
+    if name == "courses":
+        return proved(courses()).entries
     if name == "stance":
         return proved(stances(), data={"gaits.csv": GAITS}).entries
     if name in ("split", "over", "growing"):
@@ -227,6 +237,7 @@ def lines_checked_once() -> Iterator[None]:
         "split",
         "over",
         "stance",
+        "courses",
         "several",
         "growing",
     ],
@@ -285,6 +296,31 @@ def test_the_schema_describes_it(entries: dict[str, Any]) -> None:
         changed = copy.deepcopy(entries)
         change(changed)
         assert list(validator.iter_errors(changed))
+
+
+def test_what_signals_of_any_course_rest_on() -> None:
+    entries = sample("courses")
+    number = next(n for n, x in enumerate(entries["proof"]) if x["proves"].startswith("signal-slope["))
+    parts = entries["proof"][number]["proves"]
+    assert parts == "signal-slope[4]" and check(resealed(copy.deepcopy(entries))).status == "valid"
+    for key, value, reason in (
+        ("proves", "signal-slope[1]", "signal-slope[1]: the range shown is wider than what is concluded"),
+        ("proves", "signal-slope[100]", "signal-slope[100] is no obligation of this claim"),
+        ("proves", "split-signal-slope[4]", "split-signal-slope[4] is no obligation of this claim"),
+        ("proves", "slope[v,v]", "proved"),
+        ("uses", entries["proof"][number]["uses"][:1], "no trajectory is proved"),
+        ("uses", entries["proof"][number]["uses"][1:], "needs a line that gives its set"),
+    ):
+
+        def spoil(e: dict[str, Any], key: str = key, value: Any = value) -> None:
+            e["proof"][number][key] = value
+
+        rejected(spoiled(entries, spoil), reason)
+
+    def bolder(e: dict[str, Any]) -> None:
+        e["claim"]["text"] = e["claim"]["text"].replace("[-0.1, 0.1], within", "[-0.11, 0.1], within")
+
+    rejected(spoiled(entries, bolder), "proof line")
 
 
 # Which way each number claims more.
@@ -535,7 +571,7 @@ def test_another_claim_is_rejected(entries: dict[str, Any]) -> None:
         ("kappa = 0.1 ", "kappa = 0.02 "), ("kappa = 0.09", "kappa = 0.01"), ("kappa = 0.3 ", "kappa = 0.05 "),
         ("T = { range = [0.36, 0.40]", "T = { range = [0.30, 0.40]"), ("[0.37, 0.38]", "[0.32, 0.46]"),
         ("d = [-0.05, 0.05]", "d = [-0.09, 0.05]"), ("values = [0.1, 0.2]", "values = [0.1, 0.2, 2]"),
-        ("change = 0.01", "change = 0.05"), ("change = 0.005", "change = 0.05"), ("limit = 0.035", "limit = 0.01"), ("kappa = 0.6", "kappa = 0.2"), ("kappa = [0.4, 0.6]", "kappa = [0.1, 0.6]"), ("d = [-0.2, 0.2]", "d = [-0.4, 0.2]"), ("kappa = 0.3\n", "kappa = 0.1\n"), ('correction = ["shift"]', ""), ("g = 9.81", "g = 9.5"), ("T = [0.40, 0.41]", "T = [0.39, 0.41]"), ("[-0.05, 0.05], within", "[-0.06, 0.05], within"), ("loss = [0.024, 0.026]", "loss = [0.02, 0.026]"), ("x <= 0.5", "x <= 0.05"), ("range = [-0.2, 1.0]", "range = [-0.1, 0.9]"),
+        ("change = 0.01", "change = 0.05"), ("change = 0.005", "change = 0.05"), ("limit = 0.035", "limit = 0.01"), ("kappa = 0.6", "kappa = 0.2"), ("kappa = [0.4, 0.6]", "kappa = [0.1, 0.6]"), ("d = [-0.2, 0.2]", "d = [-0.4, 0.2]"), ("kappa = 0.3\n", "kappa = 0.1\n"), ('correction = ["shift"]', ""), ("g = 9.81", "g = 9.5"), ("T = [0.40, 0.41]", "T = [0.39, 0.41]"), ("[-0.05, 0.05], within", "[-0.06, 0.05], within"), ("[-0.1, 0.1], within", "[-0.11, 0.1], within"), ("loss = [0.024, 0.026]", "loss = [0.02, 0.026]"), ("x <= 0.5", "x <= 0.05"), ("range = [-0.2, 1.0]", "range = [-0.1, 0.9]"),
     ] if a in text]  # fmt: skip
     assert harder
     for old, new in harder:

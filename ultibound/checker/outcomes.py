@@ -45,7 +45,7 @@ class SeveralResults(Results):
         self.bounds = self.bounds_by_state()
         self.lift(self.within())
         route = self.routes.get("slope", Route())
-        self.gain, self.residual, self.bound = self.slopes(route.gain), route.residual, route.bound
+        self.gain, self.residual, self.bound = self.slopes("slope"), route.residual, route.bound
         self.push = None
         self.pushes = {s: self.pushed_along(s) for s in self.states}
         self.radii = {s: self.radius_along(s) for s in self.states}
