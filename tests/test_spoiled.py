@@ -5,6 +5,7 @@ from __future__ import annotations
 import copy
 import hashlib
 import json
+import re
 import subprocess
 import sys
 import time
@@ -16,11 +17,13 @@ from typing import Any
 
 import pytest
 
+import ultibound.checker
 from tests.conftest import proved
 from tests.stances import GAITS, HEIGHT, LIBRARY, PUSHING, stance
 from ultibound.checker import check
 from ultibound.checker.document import canonical, digest
 from ultibound.checker.rules import Line, Proof, Rejected
+from ultibound.checker.statement import Statement
 from ultibound.claim import parse_claim
 from ultibound.prove import Attempt
 
@@ -108,6 +111,27 @@ gap = 0.02
 """
 
 
+GROWING = """
+format = 1
+[state]
+x = [-1, 1]
+y = [-1, 1]
+[uncertain]
+q = { values = [0, 1] }
+h = { range = [0, 0.1], held = true, change = 0.01 }
+[next]
+x = "h + (x - h + q*sin(y))/1.3"
+y = "((1 - q)*(x - h) + y)/1.3"
+[target]
+x = "h"
+y = 0
+[[require]]
+that = "gain < 1"
+[effort]
+gap = 0.1
+"""
+
+
 def stances() -> str:
     """A stance over two cells of a library, with a gust, a push and a limit throughout."""
     return stance(
@@ -131,8 +155,8 @@ def sample(name: str) -> dict[str, Any]:
         return proved(courses()).entries
     if name == "stance":
         return proved(stances(), data={"gaits.csv": GAITS}).entries
-    if name in ("split", "over"):
-        return proved(SPLIT if name == "split" else OVER).entries
+    if name in ("split", "over", "growing"):
+        return proved({"split": SPLIT, "over": OVER, "growing": GROWING}[name]).entries
     if name == "several":
         text = (EXAMPLES / "recentring.toml").read_text().replace("[0.36, 0.42]", "[0.38, 0.40]")
         return proved(text + "[effort]\ngap = 0.1\n").entries
@@ -157,14 +181,22 @@ def sample(name: str) -> dict[str, Any]:
 
 @pytest.fixture(scope="module", autouse=True)
 def lines_checked_once() -> Iterator[None]:
-    """Lines that come after exactly the same claim and lines are not verified anew: only what follows a change is."""
+    """A claim is read once, and lines after exactly the same claim and lines are not verified anew: only what follows
+    a change is."""
     known: dict[str, tuple[Line | Rejected, int]] = {}
-    real = Proof.add
+    claims: dict[str, Statement] = {}
+    real, reading = Proof.add, ultibound.checker.read_statement
+
+    def read(text: str, settings: dict[str, str], files: dict[str, str]) -> Statement:
+        key = json.dumps([text, settings, files])
+        if key not in claims:
+            claims[key] = reading(text, settings, files)
+        return claims[key]
 
     def add(proof: Proof, raw: Any) -> None:
-        claim = proof.derivation.statement
         if not proof.lines:
-            proof.history = hashlib.sha256(repr(claim).encode())  # type: ignore[attr-defined]  # a note of the test's own
+            claim = repr(proof.derivation.statement)
+            proof.history = hashlib.sha256(claim.encode())  # type: ignore[attr-defined]  # a note of the test's own
         digest_ = getattr(proof, "history", None)
         if digest_ is None:  # lines in the making
             real(proof, raw)
@@ -186,9 +218,10 @@ def lines_checked_once() -> Iterator[None]:
         proof.lines[len(proof.lines) + 1] = found
         proof.leaves += leaves
 
-    Proof.add = add  # type: ignore[method-assign]  # put back below
-    yield
-    Proof.add = real  # type: ignore[method-assign]  # as it was
+    with pytest.MonkeyPatch.context() as patch:
+        patch.setattr(Proof, "add", add)
+        patch.setattr(ultibound.checker, "read_statement", read)
+        yield
 
 
 @pytest.fixture(
@@ -206,6 +239,7 @@ def lines_checked_once() -> Iterator[None]:
         "stance",
         "courses",
         "several",
+        "growing",
     ],
 )
 def entries(request: pytest.FixtureRequest) -> dict[str, Any]:
@@ -228,7 +262,7 @@ def resealed(entries: dict[str, Any]) -> bytes:
 
 
 def spoiled(entries: dict[str, Any], change: Callable[[dict[str, Any]], None]) -> bytes:
-    changed = copy.deepcopy(entries)
+    changed = json.loads(json.dumps(entries))
     change(changed)
     return resealed(changed)
 
@@ -368,9 +402,18 @@ def test_every_line_is_needed(entries: dict[str, Any]) -> None:
 
 
 def test_a_line_retargeted_is_rejected(entries: dict[str, Any]) -> None:
+    """Of names that differ in their number alone, as of shells, its neighbours, the first and the last."""
     names = sorted({line["proves"] for line in entries["proof"]})
+    families: dict[str, list[str]] = {}
+    for name in sorted(names, key=lambda n: (len(n), n)):
+        families.setdefault(re.sub(r"\[\d+\]$", "", name), []).append(name)
     for number, line in enumerate(entries["proof"]):
-        for name in [n for n in names if n != line["proves"]] + ["slope[v,w]", "require[99]", "require[0]", ""]:
+        mine = line["proves"]
+        others = ["slope[v,w]", "require[99]", "require[0]", ""]
+        for family in families.values():
+            k = family.index(mine) if mine in family else 0
+            others += {family[0], family[-1], *family[max(0, k - 1) : k + 2]} - {mine}
+        for name in others:
 
             def spoil(e: dict[str, Any], number: int = number, name: str = name) -> None:
                 e["proof"][number]["proves"] = name
@@ -503,7 +546,7 @@ def test_a_flow_spoiled_in_one_place_is_rejected() -> None:
         def bend(e: dict[str, Any], changed: list[str] = changed) -> None:
             e["proof"][number]["witness"]["cells"][0][0] = " ".join(changed)
 
-        if k % 7 == 0:
+        if k % 23 == 0:  # of each entry, of each power of time and of the cell's coordinates
             rejected(spoiled(entries, bend), f"proof line {number + 1}: error")
 
 
@@ -646,31 +689,47 @@ def test_the_one_file_checker_agrees(entries: dict[str, Any], pyz: Path, tmp_pat
     assert good.returncode == 0 and json.loads(good.stdout)["route"] == entries["results"]["route"], good
     bad = run(pyz, spoiled(entries, lambda e: e["results"]["gain"].update(upper="0.0001")), tmp_path)
     assert bad.returncode == 1 and "results.gain.upper: more is claimed" in bad.stdout
+
+
+def test_what_the_one_file_checker_cannot_read(pyz: Path, tmp_path: Path) -> None:
     for data in (b"", b"{", b"\xff", b"[]", b"{}", b'{"format":"ultibound-certificate/2"}'):
         assert run(pyz, data, tmp_path).returncode == 2
 
 
+EACH = "import sys; sys.path.insert(0, sys.argv[1]); from checker.command import run; [print(run(path, None, False, False, False)) for path in sys.argv[2:]]"
+
+
 def test_spoiled_certificates_through_the_one_file_checker(pyz: Path, tmp_path: Path) -> None:
-    """Each number of one certificate moved so that it claims more, each line removed: the file says no, and why."""
-    entries = sample("split")
+    """Each number of one certificate moved so that it claims more, each line removed: the file says no, and why.
+
+    All of them in one process of its own, and some in one each."""
+    entries = sample("over")
     spoilt: list[bytes] = []
     for path, text in [*quantities(entries["results"], ("results",)), *quantities(entries["proof"], ("proof",))]:
         more = MORE[path[-1]] * (-1 if "attained" in path else 1)
         changed = copy.deepcopy(entries)
         at(changed, path[:-1])[path[-1]] = moved(text, more)
         spoilt.append(resealed(changed))
-    for gone in range(len(entries["proof"])):
-        changed = copy.deepcopy(entries)
-        del changed["proof"][gone]
-        spoilt.append(resealed(changed))
+    for gone, line in enumerate(entries["proof"]):
+        if not line["proves"].startswith("over["):  # as in test_every_line_is_needed
+            changed = copy.deepcopy(entries)
+            del changed["proof"][gone]
+            spoilt.append(resealed(changed))
     for setting in ({"kappa": "0.02"}, {"kappa": "0.1"}):
         changed = copy.deepcopy(entries)
         changed["claim"]["set"] = setting
         spoilt.append(resealed(changed))
-    assert len(spoilt) > 60
-    for data in spoilt:
-        done, verdict = run(pyz, data, tmp_path), check(data)
-        assert done.returncode == 1 and done.stdout == f"INVALID: {verdict.place}: {verdict.reason}\n", done
+    assert len(spoilt) > 150
+    said = [f"INVALID: {verdict.place}: {verdict.reason}\n" for verdict in map(check, spoilt)]
+    for data, expected in list(zip(spoilt, said, strict=True))[::40]:
+        done = run(pyz, data, tmp_path)
+        assert done.returncode == 1 and done.stdout == expected, done
+    paths = [tmp_path / f"{k}.json" for k in range(len(spoilt))]
+    for path, data in zip(paths, spoilt, strict=True):
+        path.write_bytes(data)
+    command = [sys.executable, "-I", "-S", "-c", EACH, str(pyz), *map(str, paths)]
+    together = subprocess.run(command, capture_output=True, text=True, timeout=600, cwd=tmp_path, check=True)
+    assert together.stdout == "".join(f"{line}1\n" for line in said)
 
 
 def test_the_one_file_checker_is_the_folder(pyz: Path) -> None:

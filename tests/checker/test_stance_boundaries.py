@@ -845,9 +845,14 @@ def spread_of_polynomials(checker: Any) -> None:
     flows = checker.flows
     assert [flows.chebyshev(k) for k in range(5)] == [[1], [0, 1], [-1, 0, 2], [0, -3, 0, 4], [1, 0, -8, 0, 8]]
     assert flows.powers([1, 2, 3, 5, 7]) == [1 - 3 + 7, 2 - 15, 6 - 56, 20, 56] and flows.powers([]) == []
-    assert flows.moves(((2, 1), (0, 1)), 0, False) == (2, ((2, 1), (1, 1), (0, 1)), [(0, 0, 0, 1), (0, 1, 1, 2), (0, 2, 2, 1), (1, 2, 0, 1)])
-    assert flows.moves(((2, 1), (0, 1)), 0, True) == (2, ((0, 1),), [(0, 0, 2, 1), (1, 0, 0, 1)]) and flows.moves(((0, 3), (0, 1)), 1, True)[0] == 3
-    assert flows.moves((), 0, False) == (0, (), []) and flows.moves(((1, 2, 3),), 1, False)[1] == ((1, 2, 3), (1, 1, 3), (1, 0, 3))
+    assert flows.alike(((2, 1), (0, 1)), 0, False) == (2, ((0, 1), (1, 1), (2, 1)), [[1, -1, 0]])
+    assert flows.alike(((2, 1), (0, 1)), 0, True) == (2, ((0, 1),), [[1, -1, 0]])
+    assert flows.alike(((0, 3), (2, 0), (0, 1)), 1, False) == (3, ((0, 0), (0, 1), (0, 2), (0, 3), (2, 0)), [[-1, 2, -1, 0], [1]])
+    assert flows.alike((), 0, False) == (0, (), []) and flows.alike(((1, 2, 3),), 1, True) == (2, ((1, 0, 3),), [[-1, -1, 0]])
+    cubic = ((2, 1), (0, 1)), [5, 7]  # 5 x x + 7 at x = 3/4 + y, both times 16
+    assert flows.shifted_to(cubic, 0, 192, 8, False) == ((((0, 1), (1, 1), (2, 1)), [5 * 9 + 7 * 16, 5 * 24, 5 * 16]), 4)
+    assert flows.shifted_to(cubic, 0, 192, 8, True) == ((((0, 1),), [5 * 9 + 7 * 16]), 4)
+    assert flows.shifted_to(cubic, 0, 0, 8, True) == ((((0, 1),), [7]), 0)
     for poly, at, expected in SPREAD:
         exponents = tuple(poly)
         found = flows.spread((exponents, list(poly.values())), at, 8)

@@ -12,6 +12,7 @@ from typing import Any
 
 from .calculus import Unprovable
 from .grammar import constant
+from .horizon import onward, together
 from .matrices import Metric
 from .model import Quantity, Range, Requirement, Statement
 from .motion import PHASE, Motion, copy, grown, landed, motion, supported
@@ -103,8 +104,8 @@ class Derivation:
         stance = statement.stances[0]
         if len(statement.stances) > 1 or stance.name:
             raise Unprovable("only claims of one stance can be checked")
-        if statement.horizon != 1 or statement.route == "sector":
-            raise Unprovable("only the routes slope, split and curve over one step can be checked")
+        if statement.route == "sector":
+            raise Unprovable("only the routes slope, split and curve can be checked")
         several = len(stance.states) > 1
         if several and (statement.route not in ("best", "slope") or len(stance.states) > MOST_STATES):
             raise Unprovable(f"only the route slope can be checked for two to {MOST_STATES} states")
@@ -116,6 +117,8 @@ class Derivation:
         self.motion: Motion | None = None
         if stance.dynamics is not None:
             self.motion = motion(Names(self.terms, statement, {}, ""))
+        if statement.horizon > 1:
+            together(statement, self.motion)
         self.leaves: dict[str, Any] = {}  # of the last tree gone through, by what it proves (several.py)
         self.fixed = {s for s in self.states if not self.terms.variables(self.names().of(f"target({s})"))}
 
@@ -123,6 +126,35 @@ class Derivation:
         """`parts`: into how many a stance is cut for signals that may take any course; 0: they are constants."""
         landing = partial(self.followed, parts=parts) if parts else self.landed
         return Names(self.terms, self.statement, bound or {}, cut, landing)
+
+    def steps(self, text: str | None) -> int:
+        """How many steps are taken together: those of the claim, or fewer, @1, @2, … on the way (horizon.md)."""
+        if text is None:
+            return self.statement.horizon
+        if text not in {f"@{j}" for j in range(1, self.statement.horizon)}:
+            raise Unprovable(f"{text}: steps on the way are counted from 1 to the horizon, and below it")
+        return int(text[1:])
+
+    def after(self, steps: int, bound: dict[str, int], s: str, cut: str = "", parts: int = 0) -> int:
+        """A state after so many steps, less what the target has moved until the last: proofs/horizon.md (1)."""
+        names = self.names(bound, cut, parts)
+        for j in range(2, steps + 1):
+            names = self.names({**bound, **onward(names, self.states, j, self.stays)})
+        root, target = names.of(f"next({s})"), f"target({s})"
+        if steps == 1 or not self.moving(s):
+            return root
+        return self.terms.put("add", (root, self.terms.put("sub", (self.names().of(target), names.of(target)))))
+
+    def stays(self, x: int, name: str) -> int:
+        """A state or held quantity on the way, clipped where libraries and flows are known for its range only."""
+        if not self.statement.libraries and self.motion is None:
+            return x
+        put, (low, high) = self.terms.put, self.range(self.quantity(name))[0]
+        return put("min", (put("max", (x, put("number", (), low))), put("number", (), high)))
+
+    def quantity(self, name: str) -> Quantity:
+        """The state or uncertain quantity that a variable is, at whatever step."""
+        return self.stance.states.get(name) or self.statement.uncertain[name.partition("@")[0]]
 
     def landed(self, names: Names, root: int, phase: int | None = None) -> int:
         return root if self.motion is None else landed(names, self.motion, root, phase)
@@ -134,17 +166,18 @@ class Derivation:
 
     def meaning(self, name: str, domain: Domain | None) -> Meaning:
         """The obligation of that name; the set is needed where the state runs through it."""
-        found = re.fullmatch(r"(target|image|target-miss|target-slope|slope)\[([^,]+)(?:,([^,]+))?\]", name)
-        kind, s, by = found.groups() if found else ("", self.state, None)
-        if s not in self.states:
+        found = re.fullmatch(r"(target|image|target-miss|target-slope|slope)(@[^\[]+)?\[([^,]+)(?:,([^,]+))?\]", name)
+        kind, after, s, by = found.groups() if found else ("", None, self.state, None)
+        if s not in self.states or (after is not None and kind not in ("target-miss", "slope")):
             raise Unprovable(f"{name} is no obligation of this claim")
+        steps = self.steps(after)
         if by is None and kind == "target":
             return self.over(self.names().of(f"target({s})"))
         if by is None and kind == "image":
             return self.over(self.names().of(f"next({s})"))
         if by is None and kind == "target-miss":
             targets = {x: self.names().of(f"target({x})") for x in self.states}
-            return self.over(self.terms.difference(self.names(targets).of(f"next({s})"), targets[s]))
+            return self.over(self.terms.difference(self.after(steps, targets, s), targets[s]))
         if kind == "target-slope" and by in self.moving(s):
             held = {h: self.statement.uncertain[h] for h in self.moving(s)}
             given = {h: (self.occurs(q), self.surely(q)) for h, q in held.items()}
@@ -153,7 +186,7 @@ class Derivation:
             raise Unprovable(f"{name} needs a line that gives its set")
         if kind == "slope" and by in self.states:
             bound, given = self.through(domain, {})
-            return self.over(self.names(bound, by).of(f"next({s})"), by, given, True)
+            return self.over(self.after(steps, bound, s, by), by, given, True)
         if len(self.states) == 1 and (one := self.of_one(name, domain)) is not None:
             return one
         support = re.fullmatch(r"support\[([1-9][0-9]{0,3})\]", name)
@@ -219,16 +252,16 @@ class Derivation:
         bound, given = self.through(domain, {})
         without = dict.fromkeys(self.statement.correction, put("number", (), Fraction(0)))
 
-        def part(bound: dict[str, int], name: str, cut: str = "") -> int:
-            return self.names(bound, cut, parts).of(name)
+        def step(bound: dict[str, int], cut: str = "") -> int:
+            return self.after(self.statement.horizon, bound, s, cut, parts)
 
-        step = f"next({s})"
         if slope:
-            change = self.terms.difference(part(bound, step, s), part({**bound, **without}, step, s))
-            return self.over(put("add", (part(bound, s, s), change)), s, {**self.courses(parts), **given}, True)
-        at = {s: part({}, f"target({s})")}
-        kept = put("sub", (part({**bound, **without}, step), part(bound, s)))
-        shift = self.terms.difference(part(at, step), part({**at, **without}, step))
+            change = self.terms.difference(step(bound, s), step({**bound, **without}, s))
+            kept = self.names(bound, s).of(s)
+            return self.over(put("add", (kept, change)), s, {**self.courses(parts), **given}, True)
+        at = {s: self.names().of(f"target({s})")}
+        kept = put("sub", (step({**bound, **without}), self.names(bound).of(s)))
+        shift = self.terms.difference(step(at), step({**at, **without}))
         return self.over(put("add", (kept, shift)), "", given, True)
 
     def line(self, domain: Domain) -> Meaning:
@@ -236,8 +269,8 @@ class Derivation:
         put, s = self.terms.put, self.state
         bound, given = self.through(domain, {})
         names = self.names(bound)
-        target = names.of(f"target({s})")
-        far, error = (put("abs", (self.terms.difference(names.of(x), target),)) for x in (f"next({s})", s))
+        target, ends = names.of(f"target({s})"), (self.after(self.statement.horizon, bound, s), names.of(s))
+        far, error = (put("abs", (self.terms.difference(x, target),)) for x in ends)
         above = put("mul", (put("number", (), domain.slope), error))
         return self.over(put("sub", (far, above)), "", given, True)
 
@@ -247,7 +280,7 @@ class Derivation:
         inner, outer = domain.radii[j - 2] if j > 1 else Fraction(0), domain.radii[j - 1]
         target = self.names().of(f"target({s})")
         x = self.kept(put("add", (target, put("variable", (), error))), domain)
-        root = self.terms.difference(self.names({s: x}).of(f"next({s})"), target)
+        root = self.terms.difference(self.after(self.statement.horizon, {s: x}, s), target)
         meaning = self.over(root, "", {error: ((-outer, outer),) * 2}, True)
         cells = (-outer, -inner), (inner, outer)
         variables = [replace(v, cells=cells) if v.name == error else v for v in meaning.variables]
@@ -397,12 +430,15 @@ class Derivation:
             if name in given:
                 outer, inner = given[name]
             else:
-                quantity = self.stance.states.get(name) or self.statement.uncertain[name]
+                quantity = self.quantity(name)
                 if quantity.values is not None:
                     cells = tuple(constant(e, self.statement.values) for e in quantity.values)
                     variables.append(Ranged(name, cells, cells[0], True))
                     continue
                 outer, inner = self.range(quantity)
+                if "@" in name and quantity.held:  # what it moves by; a point may stay
+                    most = self.change(quantity.name)[1]
+                    outer, inner = (-most, most), (Fraction(0), Fraction(0))
             cuts = [outer[0], *sorted(x for x in self.lines(name, root) if outer[0] < x < outer[1]), outer[1]]
             variables.append(Ranged(name, tuple(pairwise(cuts)), inner, False))
         if prod(len(v.cells) for v in variables) > MOST_CELLS:

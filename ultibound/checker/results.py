@@ -2,11 +2,11 @@
 
 from __future__ import annotations
 
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from fractions import Fraction
 from typing import Any
 
-from .derive import RANGED
+from .derive import RANGED, Domain
 from .grammar import constant
 from .rules import Line, Proof, Rejected
 from .theorems import PAIRS, levels, magnitude, movement
@@ -57,9 +57,8 @@ class Results:
         (ball,) = balls
         invariant = self.one("invariant-region", "invariant") or self.one("invariant-ball", "invariant")
         self.domain = invariant.domain if invariant is not None else ball.domain
-        self.lasting = self.derivation.motion is None or self.above(1)  # else points are of no stance
-        self.unsupported = 0 if self.lasting else 1
-        self.settled = invariant is not None and self.supported()
+        self.way = self.on_the_way()
+        self.supported_from(invariant)
         # a smaller ball that is not mapped into itself, or a stance that is not shown to last, is no set to speak of
         self.partial = not self.settled and (ball.rule == "smaller-ball" or invariant is not None or not self.lasting)
         centre = proof.lines[ball.uses[0]].concludes
@@ -75,10 +74,11 @@ class Results:
         proved = () if self.partial else PAIRS
         self.routes = {name: self.route(name) for name in proved if self.one(name, name) is not None}
         self.reported = self.chosen()
+        self.best = self.sharp = self.least_bound()
+        self.lift(None if self.best is None else self.best.upper)
         route = self.routes.get(self.reported, Route())
         self.residual, self.bound = route.residual, route.bound
         self.gain = self.contraction() if self.reported == "curve" else self.slopes(self.reported)
-        self.best = self.sharp = self.least_bound()
         self.push = self.pushed()
         numbered = enumerate(self.statement.requirements, 1)
         self.requirements = [self.required(n, r) for n, r in numbered if not variant or n == variant]
@@ -106,6 +106,52 @@ class Results:
             return "ball", True
         return "smaller ball", self.statement.shrink and wide
 
+    def supported_from(self, invariant: Line | None) -> None:
+        """Whether points are of the claim's own stances and steps, and whether the set is settled."""
+        moves = self.derivation.motion is not None
+        self.unsupported = 1 if moves and not self.above(1) else 0
+        self.lasting = self.way is not None and not self.unsupported
+        self.settled = invariant is not None and self.way is not None and self.supported()
+
+    def on_the_way(self) -> Domain | None:
+        """Where states may be at every step from the set, also within a horizon: proofs/horizon.md (2)."""
+        if self.statement.horizon == 1 or self.domain is None or not self.domain.ball:
+            return self.domain
+        line = self.one("course", "course")
+        return None if line is None else line.domain
+
+    def led(self, error: Fraction) -> list[Fraction] | None:
+        """How far from the target each step within a horizon may lead; None where that is not known."""
+        found, once = [error], self.one("slope", "slope@1")
+        for j in range(1, self.statement.horizon):
+            line, start = self.one("slope", f"slope@{j}"), error
+            if line is None and self.way == self.domain:  # the step before ends in the set, and this one starts there
+                line, start = once, found[-1]
+            if line is None or line.domain != self.domain:
+                return None
+            found.append(line.concludes["gain"] * start + line.concludes["residual"])
+        return found
+
+    def lifted(self, error: Fraction) -> Fraction:
+        """The largest error at any step, of one at the end of every horizon."""
+        return max(self.led(error) or [error])
+
+    def phased(self, bound: Fraction | None) -> bool:
+        """Whether in the end every step starts in the set: proofs/horizon.md (3)."""
+        if self.way == self.domain or bound is None:
+            return True
+        return all(less(x, self.radius.lower) for x in self.led(bound) or [])
+
+    def lift(self, least: Fraction | None) -> None:
+        """Bounds of all steps, where in the end not every step starts in the set."""
+        if self.phased(least):
+            return
+        for name, r in self.routes.items():
+            if r.bound is not None and r.bound.upper is not None:
+                self.routes[name] = replace(r, bound=Span(r.bound.lower, self.lifted(r.bound.upper)))
+        if self.best is not None and self.best.upper is not None:
+            self.best = self.sharp = Span(self.best.lower, self.lifted(self.best.upper))
+
     def supported(self) -> bool:
         """Whether what has to stay positive throughout a stance does: proofs/stance.md (4)."""
         motion = self.derivation.motion
@@ -118,7 +164,7 @@ class Results:
     def above(self, k: int) -> bool:
         """Whether the k-th quantity that has to stay positive does."""
         line = self.one("range", f"support[{k}]")
-        return line is not None and line.domain == self.domain and line.concludes["lower"] > 0
+        return line is not None and line.domain == self.way and line.concludes["lower"] > 0
 
     def escapes(self) -> bool:
         """Whether a point leaves the region: else no ball is the set (proofs/invariant-set.md (4))."""
@@ -321,8 +367,7 @@ class Results:
         start, end = (constant(e, self.statement.values) for e in (r.start, r.end))
         most: int | None = None
         if self.settled and less(start[1], self.radius.lower, equal=True):
-            counts = [n for name in self.routes if (n := self.count(name, start[1], end[0])) is not None]
-            most = min(counts, default=None)
+            most = min((n for x in self.routes if (n := self.steps(x, start[1], end[0])) is not None), default=None)
         least: Fraction | None = None
         paths = [(x.concludes["steps"] + 1, n) for n, x in self.lines("path", "path")
                  if self.lasting and x.concludes["from"] <= start[0] and x.concludes["distance"] > end[1]]  # fmt: skip
@@ -332,6 +377,18 @@ class Results:
         span = Span(least, None if most is None else Fraction(most))
         proved = most is not None and compared(r.relation, Span(None, Fraction(most)), c)
         return verdict(proved, opposed(r.relation, Span(None, least), c), None if span == NOTHING else span)
+
+    def steps(self, name: str, error: Fraction, wanted: Fraction) -> int | None:
+        """Steps by one route, horizon by horizon: proofs/horizon.md (4)."""
+        n = self.statement.horizon
+        if n == 1:
+            return self.count(name, error, wanted)
+        if self.led(error) is None:
+            return None
+        far = self.lifted(error)
+        kept = self.kind == "region" or less(far, self.radius.lower, equal=True)
+        rounds = self.count(name, far, wanted) if kept else None
+        return None if rounds is None else rounds * n
 
     def count(self, name: str, error: Fraction, wanted: Fraction) -> int | None:
         """Steps by one route: the error is led from level to level, rounded up each time."""
@@ -371,7 +428,7 @@ class Results:
             line = None
         if self.partial and not (self.domain is not None and self.domain.ball):
             taken = NOTHING  # the region may hold more than the ball that the requirement is about
-        if line is not None and line.domain != self.domain:
+        if line is not None and line.domain != (self.way or self.domain):
             raise Rejected(f"require[{number}]: over another set than the gain")
         value = Span(line.concludes["lower"], line.concludes["upper"]) if line is not None else None
         proved = line is not None and (self.whole or not line.on_set)

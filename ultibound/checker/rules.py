@@ -29,6 +29,7 @@ SHAPES: dict[str, tuple[tuple[str, ...], tuple[str, ...] | None]] = {
     "smaller-ball": ((), ("radius",)),
     "invariant-region": ((), ()),
     "invariant-ball": ((), ()),
+    "course": ((), ()),
     "slope": ((), ("gain", "residual")),
     "split": ((), ("gain", "residual")),
     "shells": (("radii", "slope"), ()),
@@ -44,6 +45,7 @@ SHAPES: dict[str, tuple[tuple[str, ...], tuple[str, ...] | None]] = {
     "componentwise": (("b", "p"), None),  # one a state
     "invariant-rows": ((), ()),
     "periodic": (("bits", "held", "start", "steps"), None),  # one a state
+    "product": (("bits", "points", "power"), ("lower",)),
 }
 
 

@@ -117,18 +117,55 @@ class Obligations:
         s = state or self.state
         return self._of(f"image[{s}]", self._scope({}).name(f"next({s})"))
 
-    def slope(self, domain: Domain, of: str = "", by: str = "") -> Obligation:
-        """slope[s,x]: ∂F_s/∂x over the set and uncertain values."""
+    def slope(self, domain: Domain, of: str = "", by: str = "", steps: int = 0) -> Obligation:
+        """slope[s,x]: ∂F_s/∂x over the set and uncertain values; slope@j[s,x]: of j steps, fewer than the horizon."""
         bound, ranges = self._set(domain)
-        s, x = of or self.state, by or self.state
-        return self._of(f"slope[{s},{x}]", self._scope(bound, cut=x).name(f"next({s})"), x, ranges)
+        s, x, on = of or self.state, by or self.state, f"@{steps}" if steps else ""
+        return self._of(f"slope{on}[{s},{x}]", self._after(bound, s, x, steps), x, ranges)
 
-    def miss(self, state: str = "") -> Obligation:
-        """target-miss[s]: F(x*, w) − x* over uncertain values."""
-        s = state or self.state
+    def miss(self, state: str = "", steps: int = 0) -> Obligation:
+        """target-miss[s]: F(x*, w) − x* over uncertain values; target-miss@j[s]: of j steps."""
+        s, on = state or self.state, f"@{steps}" if steps else ""
         targets = {x: self._scope({}).name(f"target({x})") for x in self.states}
-        step = self._scope(targets).name(f"next({s})")
-        return self._of(f"target-miss[{s}]", self.graph.difference(step, targets[s]))
+        return self._of(
+            f"target-miss{on}[{s}]", self.graph.difference(self._after(targets, s, steps=steps), targets[s])
+        )
+
+    def _after(self, bound: Mapping[str, int], s: str, cut: str = "", steps: int = 0, parts: int = 0) -> int:
+        """A state after the steps of the horizon, or as many as said, less what the target has moved until the last.
+
+        proofs/horizon.md (1)
+        """
+        scope, count = self._scope(bound, cut, parts), steps or self.claim.horizon
+        for j in range(2, count + 1):
+            scope = self._scope({**bound, **self._onward(scope, j)})
+        root, target = scope.name(f"next({s})"), f"target({s})"
+        if count == 1 or not self.moving(s):
+            return root
+        g = self.graph
+        return g.add("add", root, g.add("sub", self._scope({}).name(target), scope.name(target)))
+
+    def _onward(self, scope: Scope, step: int) -> dict[str, int]:
+        """Gates that names stand for at a step, from those of the step before."""
+        g, found = self.graph, dict[str, int]()
+        for n, q in self.claim.uncertain.items():
+            again = g.add("variable", name=f"{n}@{step}")
+            if not q.held:
+                found[n] = again
+            elif q.change is not None:
+                found[n] = self._stays(g.add("add", scope.name(n), again), n)
+        return found | {s: self._stays(scope.name(f"next({s})"), s) for s in self.states}
+
+    def _stays(self, x: int, name: str) -> int:
+        """Clipped to the range a library or a flow is known for, where the claim has one."""
+        if not self.claim.libraries and self.motion is None:
+            return x
+        g, (low, high) = self.graph, self._cells(self._quantity(name))[0][0]
+        return g.add("min", g.add("max", x, g.number(low)), g.number(high))
+
+    def _quantity(self, name: str) -> Quantity:
+        """The state or uncertain quantity that a variable is, at whatever step."""
+        return self.stance.states.get(name) or self.claim.uncertain[name.partition("@")[0]]
 
     def moving(self, state: str = "") -> list[str]:
         """Held quantities with a `change` on which the target depends."""
@@ -150,8 +187,10 @@ class Obligations:
 
     def _split(self, bound: dict[str, int], parts: int = 0) -> int:
         s, g = self.state, self.graph
-        full, nominal = self._scope(bound, s, parts), self._scope({**bound, **self._uncorrected()}, s, parts)
-        return g.add("add", full.name(s), g.difference(full.name(f"next({s})"), nominal.name(f"next({s})")))
+        change = g.difference(
+            self._after(bound, s, s, parts=parts), self._after({**bound, **self._uncorrected()}, s, s, parts=parts)
+        )
+        return g.add("add", self._scope(bound, s).name(s), change)
 
     def under_any_course(self, domain: Domain, parts: int, route: str = "slope") -> Obligation:
         """signal-slope[M], split-signal-slope[M]: what the route takes slopes of, signals of any course in M parts.
@@ -184,11 +223,8 @@ class Obligations:
         s, g = self.state, self.graph
         bound, ranges = self._set(domain)
         at = {s: self._scope({}).name(f"target({s})")}
-        kept = g.add(
-            "sub", self._scope({**bound, **self._uncorrected()}).name(f"next({s})"), self._scope(bound).name(s)
-        )
-        there = self._scope({**at, **self._uncorrected()}).name(f"next({s})")
-        shift = g.difference(self._scope(at).name(f"next({s})"), there)
+        kept = g.add("sub", self._after({**bound, **self._uncorrected()}, s), self._scope(bound).name(s))
+        shift = g.difference(self._after(at, s), self._after({**at, **self._uncorrected()}, s))
         return self._of(f"split-residual[{s}]", g.add("add", kept, shift), "", ranges)
 
     def _uncorrected(self) -> dict[str, int]:
@@ -207,7 +243,7 @@ class Obligations:
         s, g = self.state, self.graph
         target = self._scope({}).name(f"target({s})")
         x = self._kept(g.add("add", target, g.add("variable", name=f"error({s})")), domain)
-        root = g.difference(self._scope({s: x}).name(f"next({s})"), target)
+        root = g.difference(self._after({s: x}, s), target)
         return self._of("error", root, "", {f"error({s})": ((-radius, radius),) * 2})
 
     def line(self, domain: Domain, slope: Fraction) -> Obligation:
@@ -215,8 +251,8 @@ class Obligations:
         s, g = self.state, self.graph
         bound, ranges = self._set(domain)
         scope = self._scope(bound)
-        target = scope.name(f"target({s})")
-        far, error = (g.add("abs", g.difference(scope.name(x), target)) for x in (f"next({s})", s))
+        target, ends = scope.name(f"target({s})"), (self._after(bound, s), scope.name(s))
+        far, error = (g.add("abs", g.difference(x, target)) for x in ends)
         return self._of(f"line[{s}]", g.add("sub", far, g.add("mul", g.number(slope), error)), "", ranges)
 
     def requirement(self, number: int, domain: Domain) -> Obligation:
@@ -396,13 +432,20 @@ class Obligations:
         cells, inside, listed = (
             ((ranges[name][0],), ranges[name][1], False)
             if name in ranges
-            else self._cells(self.stance.states.get(name) or self.claim.uncertain[name])
+            else self._moved(name)
+            if "@" in name and self._quantity(name).held
+            else self._cells(self._quantity(name))
         )
         if not listed:
             (low, high), lines = cells[0], self._lines(name, root)
             ends = [low, *sorted(x for x in lines if low < x < high), high]
             cells = tuple(pairwise(ends))
         return Variable(name, cells, inside, listed)
+
+    def _moved(self, name: str) -> tuple[tuple[Ends, ...], Ends, bool]:
+        """What a held quantity moves by in a step of a horizon; a point may stay."""
+        most = self.change(self._quantity(name).name)
+        return ((-most, most),), (Fraction(0), Fraction(0)), False
 
     def _lines(self, name: str, root: int) -> set[Fraction]:
         """Grid lines of the library axes that read a variable directly."""

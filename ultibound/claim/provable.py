@@ -48,8 +48,10 @@ def not_yet(claim: Claim) -> str | None:
         return f"state: {len(stance.states)} states; claims of up to {MOST_STATES} states can be proved"
     if several and claim.route not in ("best", "slope"):
         return f"route: {claim.route} is known for a single state; use slope or best"
-    if claim.horizon != 1:
-        return f"horizon: {claim.horizon}; only one step at a time can be proved yet; remove the key"
+    if claim.horizon > 1 and any(q.within for q in claim.uncertain.values()):
+        return "horizon: a signal within the stance is followed for one step at a time only; remove the key"
+    if claim.horizon > 1 and any(q.change is not None and q.values is not None for q in claim.uncertain.values()):
+        return "horizon: a held quantity of a finite list that changes is followed for one step at a time only, yet"
     if claim.route == "sector":
         return "route: sector cannot be proved yet; use slope, split, curve or best"
     if claim.route == "split" and not claim.correction:
