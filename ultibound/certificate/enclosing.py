@@ -85,6 +85,9 @@ class Encloser:
                 continue
             except Undefined as why:
                 self.limits[name] = str(why)
+                if rational:  # fractions that grow too long
+                    rational = False
+                    continue
                 share /= 16
                 if found.stopped:
                     return None

@@ -45,7 +45,7 @@ class SeveralResults(Results):
         self.bounds = self.bounds_by_state()
         self.lift(self.within())
         route = self.routes.get("slope", Route())
-        self.gain, self.residual, self.bound = self.slopes(route.gain), route.residual, route.bound
+        self.gain, self.residual, self.bound = self.slopes("slope"), route.residual, route.bound
         self.push = None
         self.pushes = {s: self.pushed_along(s) for s in self.states}
         self.radii = {s: self.radius_along(s) for s in self.states}
@@ -197,7 +197,7 @@ class SeveralResults(Results):
         if r.kind == "steps":
             return self.stepped_along(r, c)
         if r.kind in ("bound", "sharp_bound") and r.state is not None:
-            span = None if r.kind == "sharp_bound" else self.long_run(r.state)
+            span = self.long_run(r.state)  # by the best argument, for either name
             proved = self.whole and span is not None and compared(r.relation, Span(None, span.upper), c)
             taken = Span(None, None if span is None else span.lower)
             return verdict(proved, not self.any and opposed(r.relation, taken, c), span)
@@ -259,7 +259,8 @@ class SeveralResults(Results):
     def by_state(self) -> dict[str, dict[str, Span | None]]:
         found: dict[str, dict[str, Span | None]] = {}
         for s in self.states:
-            found[s] = {"bound": self.long_run(s), "sharp_bound": None, "radius": self.radii[s], "push": self.pushes[s]}
+            far = self.long_run(s)
+            found[s] = {"bound": far, "sharp_bound": far, "radius": self.radii[s], "push": self.pushes[s]}
         return found
 
     def targets(self) -> dict[str, Span]:

@@ -76,10 +76,11 @@ class SeveralAttempt(Attempt):
         elif found is not None:
             self.domain = self._within(self.norm, found.radius, found.beyond)
         moves = self._movements()
-        way, through = self._course(self.domain, ball, on, lambda j: self._step(j, on, moves))
+        way, through = self._course(self.domain, ball, on, lambda j: self._step(j, on, moves), self._largest(self.norm))
         for k in range(1, len(o.motion.positive) + 1 if o.motion is not None else 1):
             self.ranges.enclose(o.support(k, through), way, gap=DECIDED, side=-1)
-        slopes, misses = self._norm("slopes", on), self._norm("misses", on)
+        lost = way == on == ball and self.claim.horizon > 1  # steps within a horizon may leave the region
+        slopes, misses = (None, None) if lost else (self._norm("slopes", on), self._norm("misses", on))
         pair = self._contraction(slopes, misses, moves)
         self._growing(on, pair)
         tables = self._entries(slopes, misses, on)
@@ -325,6 +326,9 @@ class SeveralAttempt(Attempt):
                 line = w.matrix(proves, found.trees, bits, on, leaves)
             except (Undefined, Rejected) as why:
                 self.ranges.limits[proves] = str(why)
+                if not bits:  # fractions that grow too long
+                    bits = BITS
+                    continue
                 if found.stopped:
                     return None
                 share /= 16
