@@ -13,6 +13,7 @@ from collections.abc import Callable
 import pytest
 
 from tests.checker import (
+    test_absorbed_boundaries,
     test_boundaries,
     test_matrices,
     test_periodic_boundaries,
@@ -42,7 +43,7 @@ PROOFS = (
 )
 STANCES = ("calculus", "motion", "signals", "models", "rates", "flows")
 NORMS = ("matrices",)
-SEVERAL = ("jacobians", "several", "outcomes", "periodic", "products")
+SEVERAL = ("jacobians", "several", "outcomes", "periodic", "products", "absorbed")
 READING = ("grammar", "numerals", "statement", "tables", "scope", "command")
 SAMPLE, SEED = 20, 20260101
 MOST_EQUIVALENT = 0.05
@@ -63,7 +64,12 @@ def batteries(copies: Copies) -> dict[str, Battery]:
     """Of each module."""
     reading, stances = Battery(test_reading.CASES, 400), Battery(test_stance_boundaries.CASES)
     norms = Battery(test_matrices.CASES)
-    several = Battery(test_several_boundaries.CASES | test_periodic_boundaries.CASES | test_product_boundaries.CASES)
+    several = Battery(
+        test_several_boundaries.CASES
+        | test_periodic_boundaries.CASES
+        | test_product_boundaries.CASES
+        | test_absorbed_boundaries.CASES
+    )
     stance_cases = {f"stance: {n}": q for n, q in test_stance_boundaries.CASES.items()}
     several_cases = {f"several: {n}": q for n, q in test_several_boundaries.CASES.items()}
     proofs = Battery(test_boundaries.CASES | stance_cases | several_cases)
