@@ -14,7 +14,7 @@ from math import prod
 from .constants import constant
 from .errors import Bad
 from .graph import Graph
-from .model import Claim, Quantity, Range, Requirement
+from .model import Claim, Quantity, Range, Requirement, Stance
 from .motion import PHASE, Motion, copy, grown, landed, motion, supported
 from .resolve import Scope
 
@@ -115,12 +115,13 @@ class Obligations:
         s, x = of or self.state, by or self.state
         return self._of(f"slope[{s},{x}]", self._scope(bound, cut=x).name(f"next({s})"), x, ranges)
 
-    def miss(self, state: str = "") -> Obligation:
-        """target-miss[s]: F(x*, w) − x* over uncertain values."""
+    def miss(self, state: str = "", after: Stance | None = None) -> Obligation:
+        """target-miss[s]: F(x*, w) − x* over uncertain values; the second x* of the stance that follows, if any."""
         s = state or self.state
         targets = {x: self._scope({}).name(f"target({x})") for x in self.states}
         step = self._scope(targets).name(f"next({s})")
-        return self._of(f"target-miss[{s}]", self.graph.difference(step, targets[s]))
+        aim = Scope(self.graph, self.claim, after or self.stance).name(f"target({s})")
+        return self._of(f"target-miss[{s}]", self.graph.difference(step, aim))
 
     def moving(self, state: str = "") -> list[str]:
         """Held quantities with a `change` on which the target depends."""

@@ -203,12 +203,19 @@ class SeveralAttempt(Attempt):
     def _matrices(self, proves: str, domain: Domain, norm: Metric | None = None) -> Matrices:
         """The entries of a matrix over a set, ready to run."""
         o = self.obligations
-        rows = [[o.slope(domain, s, x) for x in o.states] if proves == "slopes" else [o.miss(s)] for s in o.states]
+        rows = [[o.slope(domain, s, x) for x in o.states] if proves == "slopes" else [self._miss(s)] for s in o.states]
         ready = [[(x, self.ranges.runner(x, False)) for x in row] for row in rows]
         if domain.kind != "ball" or norm is None:
             return Matrices(ready)
         names = [v.name for v in Matrices(ready).variables]
         return Matrices(ready, lambda x: self._into(x, names, domain, norm))
+
+    def _miss(self, s: str) -> Obligation:
+        return self.obligations.miss(s)
+
+    def _form(self, proves: str, norm: Metric) -> Norm:
+        """The norm in which a matrix is seen."""
+        return Norm(floats(norm.rows), floats(norm.inverse) if proves == "slopes" else None, norm.kind == "ellipsoid")
 
     def _into(self, x: Floats, names: list[str], domain: Domain, norm: Metric) -> Floats:
         """Points moved towards the target until they lie in the ball."""
@@ -240,8 +247,7 @@ class SeveralAttempt(Attempt):
         def watch(leaves: int, high: float) -> None:
             self.watch(f"{proves} of {len(self.obligations.states)} states", leaves, high)
 
-        matrices = self._matrices(proves, domain, norm)
-        form = Norm(floats(norm.rows), floats(norm.inverse) if proves == "slopes" else None, norm.kind == "ellipsoid")
+        matrices, form = self._matrices(proves, domain, norm), self._form(proves, norm)
         effort = Effort(gap, cells, self.ranges.until - self.ranges.spent, watch, later=later)
         try:
             return stretched(matrices, form, effort, enough)
