@@ -63,8 +63,8 @@ class NormWriter(Writer):
         self.raw.append(line)
         return len(self.raw)
 
-    def about(self, metric: int, targets: Sequence[int], radius: Fraction) -> int:
-        """The ball of a metric about the targets, the largest in the region as far as points of the targets show."""
+    def about(self, metric: int, targets: Sequence[int], radius: Fraction, largest: bool = True) -> int:
+        """The ball of a metric about the targets; the largest in the region as far as points of the targets show."""
         d, norm = self.derivation, self.proof.lines[metric].metric
         edges = []
         for i, s in enumerate(d.states):
@@ -75,7 +75,7 @@ class NormWriter(Writer):
                 if (x.part, x.rule, x.proves) == (self.part, "point", f"target[{s}]"):
                     edge = min(high - x.concludes["lower"], x.concludes["upper"] - low)
                     edges.append((max(edge, Fraction(0)) ** 2 / wide, n))
-        if not edges:
+        if not edges or not largest:
             return self.append("smaller-ball", "ball", [metric, *targets], {}, {"radius": downward(radius)})
         square, nearest = min(edges)
         outer = Fraction(decimal_up(root(square)[1], DIGITS))

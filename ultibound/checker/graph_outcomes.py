@@ -51,6 +51,10 @@ class StanceResults(SeveralResults):
                     return True
         return False
 
+    def stated(self) -> bool:
+        """Whether the claim itself fixes the norm: of one state it is the error."""
+        return len(self.states) == 1 or super().stated()
+
     def placed(self, kind: str | None, whole: bool, settled: bool, partial: bool) -> None:
         """What the sets of all stances together are."""
         self.kind, self.whole, self.settled, self.partial = kind, whole, settled, partial

@@ -12,6 +12,7 @@ k_st = max ‖V_t J V_s⁻¹‖ and ε_st = max ‖V_t m‖ (proofs/graph.md). F
 from __future__ import annotations
 
 from collections.abc import Iterator, Mapping
+from contextlib import suppress
 from dataclasses import dataclass
 from fractions import Fraction
 from itertools import product
@@ -46,6 +47,8 @@ def families(
     if n == 1:
         yield dict.fromkeys(room, _exact("box", np.eye(1)))
         return
+    if any(not len(x.jacobians) or not len(x.misses) for x in steps.values()):  # nowhere a value
+        return
     for signs in _mirrors(steps, room):
         turned = {s: np.diag(x) for s, x in signs.items()}
         jacobians = np.concatenate([turned[t] @ x.jacobians @ turned[s] for (s, t), x in steps.items()])
@@ -54,10 +57,11 @@ def families(
         for p in proposals(jacobians, misses, least, "box" if weights is not None else kind, weights):
             v = np.array([[float(x) for x in row] for row in p.rows])
             yield {s: p if (x == 1).all() else _exact(p.kind, v @ np.diag(x)) for s, x in signs.items()}
-    if weights is None and kind in ("auto", "ellipsoid"):
-        yield from _ellipsoids(steps, room)
-    if weights is None and kind in ("auto", "box", "polytope"):
-        yield from _boxes(steps, room, "polytope" if kind == "polytope" else "box")
+    with np.errstate(all="ignore"):
+        round_ = _ellipsoids(steps, room) if weights is None and kind in ("auto", "ellipsoid") else []
+        flat = "polytope" if kind == "polytope" else "box"
+        boxes = _boxes(steps, room, flat) if weights is None and kind != "ellipsoid" else []
+    yield from (*round_, *boxes)
 
 
 def _mirrors(steps: Mapping[Step, Samples], room: Mapping[str, Floats]) -> Iterator[dict[str, Floats]]:
@@ -95,30 +99,54 @@ def _thetas(steps: Mapping[Step, Samples], room: Mapping[str, Floats]) -> list[f
     return [rate + share * (1 - rate) for share in SHARES if rate < 1] or [1.0]
 
 
-def _ellipsoids(steps: Mapping[Step, Samples], room: Mapping[str, Floats]) -> Iterator[Family]:
+def _ellipsoids(steps: Mapping[Step, Samples], room: Mapping[str, Floats]) -> list[Family]:
     means = {e: x.jacobians.mean(axis=0) for e, x in steps.items()}
     spread = {t: np.diag(1e-6 * room[t] ** 2) for t in room}
     for (_, t), x in steps.items():
-        spread[t] = spread[t] + x.misses.T @ x.misses / max(len(x.misses), 1)
+        spread[t] = spread[t] + x.misses.T @ x.misses / len(x.misses)
+    found = []
     for theta in _thetas(steps, room):
-        inward = {s: np.diag(room[s] ** -2) for s in room}
-        outward = dict(spread)
-        for _ in range(LEVELS):
-            before, after = dict(inward), dict(outward)
-            inward = {s: np.diag(room[s] ** -2) for s in room}
-            outward = dict(spread)
-            for (s, t), a in means.items():
-                inward[s] = inward[s] + a.T @ before[t] @ a / theta**2
-                outward[t] = outward[t] + a @ after[s] @ a.T / theta**2
-            if not all(np.isfinite(x).all() and np.abs(x).max() < 1e12 for x in (*inward.values(), *outward.values())):
-                break
-        else:
-            yield {s: _exact("ellipsoid", np.linalg.cholesky(p).T) for s, p in inward.items()}
-            yield {s: _exact("ellipsoid", np.linalg.inv(np.linalg.cholesky(p))) for s, p in outward.items()}
+        with suppress(np.linalg.LinAlgError):
+            inward, outward = _levels(means, spread, room, theta)
+            found.append({s: _exact("ellipsoid", np.linalg.cholesky(p).T) for s, p in inward.items()})
+            found.append({s: _exact("ellipsoid", np.linalg.inv(np.linalg.cholesky(p))) for s, p in outward.items()})
+    return found
 
 
-def _boxes(steps: Mapping[Step, Samples], room: Mapping[str, Floats], kind: str) -> Iterator[Family]:
-    table = {e: np.abs(x.jacobians).max(axis=0) for e, x in steps.items()}
+def _levels(
+    means: Mapping[Step, Floats], spread: Mapping[str, Floats], room: Mapping[str, Floats], theta: float
+) -> tuple[dict[str, Floats], dict[str, Floats]]:
+    """P and P⁻¹ of every stance, by iteration; raises LinAlgError where it does not end."""
+    inward, outward = {s: np.diag(room[s] ** -2) for s in room}, dict(spread)
+    for _ in range(LEVELS):
+        before, after = dict(inward), dict(outward)
+        inward, outward = {s: np.zeros((len(room[s]),) * 2) for s in room}, dict(spread)
+        for (s, t), a in means.items():
+            inward[s] = inward[s] + a.T @ before[t] @ a / theta**2
+            outward[t] = outward[t] + a @ after[s] @ a.T / theta**2
+        inward = {s: _touching(p, room[s]) for s, p in inward.items()}
+        found = (*inward.values(), *outward.values())
+        if not all(np.isfinite(x).all() and np.abs(x).max() < 1e12 for x in found):
+            break
+        pairs = zip((*before.values(), *after.values()), found, strict=True)
+        if all(np.abs(x - y).max() <= 1e-6 * np.abs(y).max() for x, y in pairs):
+            return inward, outward
+    raise np.linalg.LinAlgError("no limit")
+
+
+def _touching(p: Floats, room: Floats) -> Floats:
+    """P + q diag(room)⁻² with the least q in [0, 1] for which the ball of radius 1 stays within the room."""
+    low, high = 0.0, 1.0
+    for _ in range(20):
+        q = (low + high) / 2
+        inverse = np.linalg.pinv(p + np.diag((q + 1e-9) * room**-2))
+        low, high = (low, q) if (np.diag(inverse) <= room**2).all() else (q, high)
+    found: Floats = p + np.diag((high + 1e-9) * room**-2)
+    return found
+
+
+def _boxes(steps: Mapping[Step, Samples], room: Mapping[str, Floats], kind: str) -> list[Family]:
+    found, table = [], {e: np.abs(x.jacobians).max(axis=0) for e, x in steps.items()}
     missed = {e: np.abs(x.misses).max(axis=0, initial=0.0) for e, x in steps.items()}
     for theta in (0.99, *_thetas(steps, room)):
         p = {s: 1e-3 * room[s] for s in room}
@@ -128,7 +156,8 @@ def _boxes(steps: Mapping[Step, Samples], room: Mapping[str, Floats], kind: str)
             for (s, t), a in table.items():
                 p[t] = np.maximum(p[t], a @ before[s] / theta + missed[s, t])
         if all(np.isfinite(x).all() and (x < 1e9).all() for x in p.values()):
-            yield {s: _exact(kind, np.diag(1 / x)) for s, x in p.items()}
+            found.append({s: _exact(kind, np.diag(1 / x)) for s, x in p.items()})
+    return found
 
 
 def _exact(kind: str, v: Any) -> Proposal:

@@ -4,6 +4,7 @@ from __future__ import annotations
 
 from collections.abc import Mapping
 from fractions import Fraction
+from math import floor, log10
 from typing import Any
 
 import numpy as np
@@ -26,6 +27,7 @@ from .several import SHARES, SPARE, floats
 from .stances import StanceSearch, StepSearch
 
 TRIED = 6  # families of norms, the best by samples first
+WIDENED = 5  # times that smaller balls are widened
 Pairs = Mapping[Step, tuple[float, float]]
 
 
@@ -85,7 +87,7 @@ class GraphAttempt(Attempt):
         norms = {s: x.writer.metric(x.chosen.kind, x.chosen.rows, x.chosen.inverse) for s, x in each.items()}
         on: dict[str, int] = {}
         for s, x in each.items():
-            on[s] = x.writer.about(norms[s], [t.line for t in x.targets], x.domain.radius)
+            on[s] = x.writer.about(norms[s], [t.line for t in x.targets], x.domain.radius, not x.shrunk)
             x.about(on[s], images is not None)
         sets, invariant = dict(on), self._regions(norms, images)
         if invariant is not None:
@@ -147,11 +149,11 @@ class GraphAttempt(Attempt):
         weights = next(iter(self.stances.values()))._weights()
         rng = np.random.default_rng(0)
         samples = {e: x.samples(self._around(x.before), rng) for e, x in self.steps.items()}
-        tried: list[tuple[float, int, Family]] = []
+        tried: list[tuple[tuple[int, float], int, Family]] = []
         for n, family in enumerate(families(samples, room, self.claim.metric, weights)):
-            size = self._by_samples(samples, family)
-            if size is not None:
-                tried.append((size, n, family))
+            rank = self._by_samples(samples, family, regions)
+            if rank is not None:
+                tried.append((rank, n, family))
         tried.sort(key=lambda x: x[:2])
         best: tuple[float, Family] | None = None
         for _, _, family in tried[:TRIED]:
@@ -173,8 +175,8 @@ class GraphAttempt(Attempt):
         for s, x in self.stances.items():
             x.normed(family[s])
 
-    def _by_samples(self, samples: Mapping[Step, Samples], family: Family) -> float | None:
-        """The size of the bounds as samples tell it; None where the norm is none."""
+    def _by_samples(self, samples: Mapping[Step, Samples], family: Family, regions: bool) -> tuple[int, float] | None:
+        """Whether sets are kept and, then, how small the bounds are, by samples; None where the norm is none."""
         try:
             self._take(family)
         except Rejected:
@@ -183,15 +185,19 @@ class GraphAttempt(Attempt):
         for (s, t), x in samples.items():
             v, left = floats(self.stances[t].norm.rows), floats(self.stances[s].norm.inverse)
             a, m = v @ x.jacobians @ left, x.misses @ v.T
-            if family[s].kind == "ellipsoid":
-                k, e = np.linalg.norm(a, 2, axis=(1, 2)).max(), np.linalg.norm(m, axis=1).max()
-            else:
-                k, e = np.abs(a).sum(axis=2).max(), np.abs(m).max()
-            pairs[s, t] = float(k), float(e)
+            round_ = family[s].kind == "ellipsoid"
+            sizes = np.linalg.norm(a, 2, axis=(1, 2)) if round_ else np.abs(a).sum(axis=2).max(axis=1)
+            lengths = np.linalg.norm(m, axis=1) if round_ else np.abs(m).max(axis=1)
+            pairs[s, t] = float(sizes.max(initial=0.0)), float(lengths.max(initial=0.0))
+        size = self._size_of(pairs, regions)
+        if size < np.inf:
+            return 0, size
         found = bounds(pairs, list(self.stances))
-        if found is None:
-            return 1e6 + max(k for k, _ in pairs.values())
-        return max(found[s] * max(x.shares()) for s, x in self.stances.items())
+        return (2, max(k for k, _ in pairs.values())) if found is None else (1, self._share(found))
+
+    def _share(self, bound: Mapping[str, float]) -> float:
+        """The largest share of its room that a bound takes."""
+        return max(bound[s] * max(x.shares()) for s, x in self.stances.items())
 
     def _size_of(self, pairs: Pairs, regions: bool) -> float:
         """The largest share of its room that a bound takes; inf where the balls are not kept (estimates)."""
@@ -201,25 +207,36 @@ class GraphAttempt(Attempt):
         r = {s: to_float(x.domain.radius) for s, x in self.stances.items()}
         if not regions and not all(k * r[s] + e <= SPARE * r[t] for (s, t), (k, e) in pairs.items()):
             return np.inf
-        return max(found[s] * max(x.shares()) for s, x in self.stances.items())
+        return self._share(found)
 
     def _shrink(self) -> None:
-        """Smaller balls that are kept, where the largest are not."""
+        """Smaller balls that are kept, where the largest are not: found from small ones, then widened."""
         largest = {s: x.domain.radius for s, x in self.stances.items()}
-        for share in (1.0, *SHARES):
-            for s, x in self.stances.items():
-                x.domain = x._within(x.norm, _short(to_float(largest[s]) * share))
-            pairs = {e: x.pair() for e, x in self.steps.items()}
-            found = radii({e: (k * (1 + 1e-9), y * (1 + 1e-9)) for e, (k, y) in pairs.items()},
-                          {s: to_float(x.domain.radius) for s, x in self.stances.items()})  # fmt: skip
-            if found is not None:
-                for s, x in self.stances.items():
-                    if found[s] < to_float(largest[s]) * SPARE:
-                        x.domain = x._within(x.norm, _short(found[s] * SPARE))
-                if self._size_of({e: x.pair() for e, x in self.steps.items()}, False) < np.inf:
-                    return
+        most = {s: to_float(r) for s, r in largest.items()}
+        kept = self._kept_share(most) or {}
+        for _ in range(WIDENED if kept else 0):
+            wider = radii(self._pairs(kept), most) or kept
+            middle = {s: (r + max(r, wider[s])) / 2 for s, r in kept.items()}
+            kept = radii(self._pairs(middle), middle) or kept
         for s, x in self.stances.items():
-            x.domain = x._within(x.norm, largest[s])
+            r = min(_short(kept[s]) if kept else largest[s], largest[s])
+            x.domain, x.shrunk = x._within(x.norm, r), r < largest[s]
+
+    def _kept_share(self, most: Mapping[str, float]) -> dict[str, float] | None:
+        """Radii of balls that are kept, within a share of the largest."""
+        for share in SHARES:
+            wanted = {s: share * r for s, r in most.items()}
+            kept = radii(self._pairs(wanted), wanted)
+            if kept is not None:
+                return kept
+        return None
+
+    def _pairs(self, wanted: Mapping[str, float]) -> Pairs:
+        """Gain and residual of every step over balls of these radii, a little too large (estimates)."""
+        for s, x in self.stances.items():
+            x.domain = x._within(x.norm, Fraction(wanted[s]))
+        each = {e: x.pair() for e, x in self.steps.items()}
+        return {e: (k * (1 + 1e-6), y * (1 + 1e-6)) for e, (k, y) in each.items()}
 
     def _compared(self, invariant: int, on: Mapping[str, int], moves: Mapping[str, list[int] | None]) -> None:
         """Comparisons entry by entry: in the states themselves, and in the bases of the norms."""
@@ -239,4 +256,6 @@ class GraphAttempt(Attempt):
 
 
 def _short(x: float) -> Fraction:
-    return Fraction(f"{x:.4g}")
+    """Rounded down, by less than what `_pairs` adds."""
+    scale = Fraction(10) ** (9 - floor(log10(x)))
+    return floor(Fraction(x) * scale) / scale

@@ -55,6 +55,7 @@ class SeveralAttempt(Attempt):
     norm: Metric
     domain: Domain
     needed = 0  # leaves that showed the ball to be kept
+    shrunk = False  # whether the ball is smaller than the largest in the region
 
     def _prove(self) -> None:
         """Lines for the set and its metric, gain and residual, bounds by state, and the requirements."""
@@ -66,7 +67,7 @@ class SeveralAttempt(Attempt):
         self._settled(images)
         number = w.metric(self.chosen.kind, self.chosen.rows, self.chosen.inverse)
         lines = [t.line for t in self.targets]
-        ball = w.about(number, lines, self.domain.radius)
+        ball = w.about(number, lines, self.domain.radius, not self.shrunk)
         found = w.proof.lines[ball].domain
         on = ball
         if images is not None:
@@ -158,7 +159,7 @@ class SeveralAttempt(Attempt):
         for share in SHARES:
             smaller = self._within(self.norm, Fraction(f"{to_float(self.domain.radius) * share:.4g}"))
             if self._size(self.chosen, smaller) < np.inf:
-                self.domain = smaller
+                self.domain, self.shrunk = smaller, True
                 return
 
     def _proposed(self, domain: Domain) -> list[Proposal]:
