@@ -71,24 +71,38 @@ def drawn(seed: int) -> Case:
         matrix[s] = np.round(a * strength / max(1e-9, np.abs(a).sum(axis=1).max()) * rng.choice([1, 1, 1.6, 0.4]), 3)
         bend[s], wide[s] = round(rng.uniform(-0.2, 0.2), 2), [round(rng.uniform(1.2, 2.5), 1) for _ in states]
     follow = {s: aim[then[s][0]] for s in names}
-    top = f'format = 1\nshrink = {rng.choice(["true", "false"])}\n'
+    top = f"format = 1\nshrink = {rng.choice(['true', 'false'])}\n"
     kind = rng.choice(["auto", "auto", "box", "polytope", "ellipsoid"])
     top += f'[metric]\nkind = "{kind}"\n' if n > 1 else ""
     text = top + "[uncertain]\nd = [-0.02, 0.02]\ne = [-0.01, 0.02]\n"
     text += f"c = {{ range = [-0.05, 0.05], held = true{', change = 0.01' if moving else ''} }}\n"
     for s in names:
-        order = rng.sample(range(n), n)
+        order = rng.sample(range(n), n) if s != "a" else range(n)  # rows of a metric are in the order of the first
         spans = ", ".join(f"{states[i]} = [{aim[s][i] - wide[s][i]:.2f}, {aim[s][i] + wide[s][i]:.2f}]" for i in order)
         goals = ", ".join(f'{states[i]} = "{aim[s][i]} + c*{i + 1}/10"' for i in order)
         maps = []
         for i in order:
             sums = " + ".join(f"({matrix[s][i][j]})*({states[j]} - target({states[j]}))" for j in range(n))
-            curve = {"linear": "0", "smooth": f"{bend[s]}*sin({states[0]})*{states[-1]}/4", "corners": f"{bend[s]}*abs({states[-1]} - 0.1)/2"}[shape]
+            curve = {
+                "linear": "0",
+                "smooth": f"{bend[s]}*sin({states[0]})*{states[-1]}/4",
+                "corners": f"{bend[s]}*abs({states[-1]} - 0.1)/2",
+            }[shape]
             maps.append(f'{states[i]} = "{follow[s][i]} + {sums} + d + e*{i} + {curve} + c/20"')
         text += f"[stance.{s}]\nthen = {then[s]!r}\nstate = {{ {spans} }}\ntarget = {{ {goals} }}\nnext = {{ {', '.join(maps)} }}\n"
-    asked = ["settles", *(f"bound({x}) <= 3" for x in states), f"radius({states[0]}) >= 0.1", f"push({states[0]}) >= 0.1", f"steps({states[0]}, 0.5, 0.3) <= 500", "gain <= 3", "residual <= 9"]
+    asked = [
+        "settles",
+        *(f"bound({x}) <= 3" for x in states),
+        f"radius({states[0]}) >= 0.1",
+        f"push({states[0]}) >= 0.1",
+        f"steps({states[0]}, 0.5, 0.3) <= 500",
+        "gain <= 3",
+        "residual <= 9",
+    ]
     text += "".join(f'[[require]]\nthat = "{r}"\n' for r in asked)
-    text += f'[[require]]\nthat = "value({states[-1]}**2 + d)"\n[[require]]\nthat = "value(next({states[0]}))"\nin = "a"\n'
+    text += (
+        f'[[require]]\nthat = "value({states[-1]}**2 + d)"\n[[require]]\nthat = "value(next({states[0]}))"\nin = "a"\n'
+    )
 
     def goal(s: str) -> Any:
         return lambda c: aim[s] + c[:, None] * np.arange(1, n + 1) / 10
@@ -96,7 +110,11 @@ def drawn(seed: int) -> Case:
     def step(s: str) -> Any:
         def inner(x: Any, w: Any) -> Any:
             e = x - goal(s)(w[:, 2])
-            curve = {"linear": 0 * x[:, 0], "smooth": bend[s] * np.sin(x[:, 0]) * x[:, -1] / 4, "corners": bend[s] * np.abs(x[:, -1] - 0.1) / 2}[shape]
+            curve = {
+                "linear": 0 * x[:, 0],
+                "smooth": bend[s] * np.sin(x[:, 0]) * x[:, -1] / 4,
+                "corners": bend[s] * np.abs(x[:, -1] - 0.1) / 2,
+            }[shape]
             added = w[:, :1] + w[:, 1:2] * np.arange(n) + curve[:, None] + w[:, 2:] / 20
             return follow[s] + e @ matrix[s].T + added
 
@@ -104,7 +122,16 @@ def drawn(seed: int) -> Case:
 
     low = {s: np.array([round(aim[s][i] - wide[s][i], 2) for i in range(n)]) for s in names}
     high = {s: np.array([round(aim[s][i] + wide[s][i], 2) for i in range(n)]) for s in names}
-    return Case(text.replace("'", '"'), states, then, {s: step(s) for s in names}, {s: goal(s) for s in names}, low, high, moving)
+    return Case(
+        text.replace("'", '"'),
+        states,
+        then,
+        {s: step(s) for s in names},
+        {s: goal(s) for s in names},
+        low,
+        high,
+        moving,
+    )
 
 
 def norm_of(metric: dict[str, Any], e: Any) -> Any:
@@ -157,10 +184,18 @@ def simulated(case: Case, r: dict[str, Any], rng: np.random.Generator, tally: Ta
         if r["set"] is None:
             x = goal + rng.uniform(-0.3, 0.3, (WALKS, n))
         elif r["set"]["kind"] == "region":
-            x = np.where(rng.random((WALKS, n)) < 0.5, np.where(rng.random((WALKS, n)) < 0.5, case.low[start], case.high[start]), rng.uniform(case.low[start], case.high[start], (WALKS, n)))
+            x = np.where(
+                rng.random((WALKS, n)) < 0.5,
+                np.where(rng.random((WALKS, n)) < 0.5, case.low[start], case.high[start]),
+                rng.uniform(case.low[start], case.high[start], (WALKS, n)),
+            )
         else:
             e = rng.standard_normal((WALKS, n))
-            e *= (float(Fraction(r["stances"][start]["set"]["radius"]["lower"])) * (1 - 1e-9) / norm_of(r["stances"][start]["metric"], e))[:, None]
+            e *= (
+                float(Fraction(r["stances"][start]["set"]["radius"]["lower"]))
+                * (1 - 1e-9)
+                / norm_of(r["stances"][start]["metric"], e)
+            )[:, None]
             x = goal + e
         if steps["verdict"] == "proved":
             x[: WALKS // 4] = goal[: WALKS // 4]
@@ -200,7 +235,9 @@ def inside(case: Case, r: dict[str, Any], stance: str, x: Any, c: Any) -> None:
         assert (x >= case.low[stance] - 1e-7).all() and (x <= case.high[stance] + 1e-7).all(), stance
     else:
         size = norm_of(one["metric"], x - case.aim[stance](c))
-        assert (size <= float(Fraction(one["set"]["radius"]["upper"] or one["set"]["radius"]["lower"])) * (1 + 1e-7)).all(), stance
+        assert (
+            size <= float(Fraction(one["set"]["radius"]["upper"] or one["set"]["radius"]["lower"])) * (1 + 1e-7)
+        ).all(), stance
     value = r["requirements"][-2]
     if value["verdict"] == "proved":
         assert (x[:, -1] ** 2 + 0.02 <= float(Fraction(value["value"]["upper"])) + 1e-7).all()

@@ -278,6 +278,68 @@ def test_a_single_stance_that_follows_itself_is_the_plain_map() -> None:
     assert all(Q(r[x]["upper"]) == Q(plain[x]["upper"]) for x in ("gain", "residual", "bound"))
 
 
+DYNAMIC = """format = 1
+title = "Sideways, over each foot in turn, with a gust"
+[constants]
+g = 9.81
+z = 0.62
+[gains]
+kappa = 0.27
+[uncertain]
+T = [0.36, 0.40]
+slip = [-0.003, 0.003]
+gust = { range = [-0.02, 0.02], within = true }
+[define]
+w = "sqrt(g/z)"
+foot = "target(vy)/(w*tanh(w*0.19)) + kappa*(vy - target(vy)) + slip"
+[dynamics]
+duration = "T"
+[dynamics.start]
+y = "-foot"
+yd = "vy"
+[dynamics.rate]
+y = "yd"
+yd = "g/z*y + gust"
+[next]
+vy = "yd"
+[stance.left]
+then = "right"
+state = { vy = [0.02, 0.5] }
+target = { vy = 0.25 }
+[stance.right]
+then = "left"
+state = { vy = [-0.5, -0.02] }
+target = { vy = -0.25 }
+[[require]]
+that = "settles"
+[[require]]
+that = "gain <= 0.0928"
+[[require]]
+that = "throughout(y <= -0.0001)"
+in = "left"
+[[require]]
+that = "bound(vy) <= 0.0793"
+[[require]]
+that = "throughout(y >= 0)"
+"""
+
+
+def test_a_continuous_stance_over_each_foot() -> None:
+    """As in closed form, x⁺ = cosh(wT) v − w sinh(wT) foot, plus what a gust adds: at most 0.02 sinh(wT)/w."""
+    r = proved(DYNAMIC).results
+    assert verdicts(r) == ["proved", "proved", "proved", "proved", "refuted"]
+    w, times = np.sqrt(9.81 / 0.62), np.linspace(0.36, 0.40, 4001)
+    k = np.abs(np.cosh(w * times) - 0.27 * w * np.sinh(w * times)).max()
+    foot = 0.25 / (w * np.tanh(0.19 * w))
+    missed = np.abs(np.cosh(w * times) * 0.25 - w * np.sinh(w * times) * foot + 0.25) + np.sinh(w * times) * (
+        0.003 * w + 0.02 / w
+    )
+    bound = missed.max() / (1 - k)
+    upper = float(r["bound"]["upper"])
+    assert bound <= upper <= bound * 1.002
+    assert abs(float(r["gain"]["upper"]) - k) <= 1e-4
+
+
 def test_the_same_bytes_again() -> None:
     text = graph(
         {s: ("a b", "[-1, 1]", "0", f"0.3*sin(x) + {k}*w") for s, k in product(("a", "b"), ("0.01",))}, "settles"

@@ -14,6 +14,7 @@ import pytest
 
 from tests.checker import (
     test_boundaries,
+    test_graph_boundaries,
     test_matrices,
     test_periodic_boundaries,
     test_reading,
@@ -42,6 +43,7 @@ PROOFS = (
 STANCES = ("calculus", "motion", "models", "rates", "flows")
 NORMS = ("matrices",)
 SEVERAL = ("jacobians", "several", "outcomes", "periodic")
+GRAPHS = ("graph", "graph_outcomes")
 READING = ("grammar", "numerals", "statement", "tables", "scope", "command")
 SAMPLE, SEED = 20, 20260101
 MOST_EQUIVALENT = 0.05
@@ -54,7 +56,7 @@ def copies() -> Copies:
 
 @pytest.fixture(scope="module")
 def found(copies: Copies) -> dict[str, list[Mutant]]:
-    return {m: mutants(m, copies.source[m]) for m in PROOFS + STANCES + NORMS + SEVERAL + READING}
+    return {m: mutants(m, copies.source[m]) for m in PROOFS + STANCES + NORMS + SEVERAL + GRAPHS + READING}
 
 
 @pytest.fixture(scope="module")
@@ -64,13 +66,16 @@ def batteries(copies: Copies) -> dict[str, Battery]:
     norms = Battery(test_matrices.CASES)
     several = Battery(test_several_boundaries.CASES | test_periodic_boundaries.CASES)
     stance_cases = {f"stance: {n}": q for n, q in test_stance_boundaries.CASES.items()}
+    graphs = Battery(test_graph_boundaries.CASES)
     several_cases = {f"several: {n}": q for n, q in test_several_boundaries.CASES.items()}
-    proofs = Battery(test_boundaries.CASES | stance_cases | several_cases)
+    graph_cases = {f"graph: {n}": q for n, q in test_graph_boundaries.CASES.items()}
+    proofs = Battery(test_boundaries.CASES | stance_cases | several_cases | graph_cases)
     assert proofs.noticed(copies, {}) is None and reading.noticed(copies, {}) is None
     assert norms.noticed(copies, {}) is None
     assert several.noticed(copies, {}) is None
+    assert graphs.noticed(copies, {}) is None
     of_norms, of_reading = dict.fromkeys(NORMS, norms), dict.fromkeys(READING, reading)
-    of_several = dict.fromkeys(SEVERAL, several)
+    of_several = dict.fromkeys(SEVERAL, several) | dict.fromkeys(GRAPHS, graphs)
     return dict.fromkeys(PROOFS, proofs) | dict.fromkeys(STANCES, stances) | of_norms | of_several | of_reading
 
 

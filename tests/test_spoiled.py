@@ -108,6 +108,38 @@ gap = 0.02
 """
 
 
+MIRRORED = """
+format = 1
+[uncertain]
+slip = [-0.003, 0.003]
+c = { range = [0.2, 0.4], held = true, change = 0.02 }
+[stance.left]
+then = "right"
+state = { y = [-0.4, 0.4], vy = [-1.5, 1.5] }
+target = { y = 0.0, vy = "c" }
+next = { y = "0.3*y + 0.1*(vy - c) + slip", vy = "-c + 0.4*(vy - c) - 2*y + slip + 0.01*sin(y)" }
+[stance.right]
+then = "left"
+state = { vy = [-1.5, 1.5], y = [-0.4, 0.4] }
+target = { y = 0.0, vy = "-c" }
+next = { y = "0.3*y - 0.1*(vy + c) + slip", vy = "c + 0.4*(vy + c) + 2*y + slip" }
+[[require]]
+that = "settles"
+[[require]]
+that = "bound(y) <= 0.2"
+[[require]]
+that = "bound(vy) <= 0.9"
+in = "right"
+[[require]]
+that = "steps(vy, 0.5, 0.2) <= 40"
+[[require]]
+that = "always(vy <= 1.4)"
+in = "right"
+[effort]
+gap = 0.1
+"""
+
+
 def stances() -> str:
     """A stance over two cells of a library, with a gust, a push and a limit throughout."""
     return stance(
@@ -126,6 +158,8 @@ def sample(name: str) -> dict[str, Any]:
     if name == "several":
         text = (EXAMPLES / "recentring.toml").read_text().replace("[0.36, 0.42]", "[0.38, 0.40]")
         return proved(text + "[effort]\ngap = 0.1\n").entries
+    if name == "mirrored":
+        return proved(MIRRORED).entries
     if name == "ball":
         return proved(BALL.replace("0.8*(v - c)**3", "0.02*(v - c)**3")).entries
     text = (EXAMPLES / f"{name}.toml").read_text()
@@ -140,6 +174,8 @@ def sample(name: str) -> dict[str, Any]:
         text = (
             text.replace("[0.37, 0.39]", "[0.37, 0.372]").replace("[-0.1, 0.9]", "[0.1, 0.7]") + "[effort]\ngap = 0.1\n"
         )
+    if name == "sidestepping":
+        text += "[effort]\ngap = 0.1\n"
     if name == "saturated":
         text = text.replace("sharp_bound", "bound") + "[effort]\ngap = 0.02\n"
     return proved(text, data={"gaits.csv": (EXAMPLES / "gaits.csv").read_text()} if "gaits.csv" in text else {}).entries
@@ -152,7 +188,7 @@ def lines_checked_once() -> Iterator[None]:
     real = Proof.add
 
     def add(proof: Proof, raw: Any) -> None:
-        claim = proof.derivation.statement
+        claim = proof.derivation.statement if proof.graph is None else proof.graph.statement
         if not proof.lines:
             proof.history = hashlib.sha256(repr(claim).encode())  # type: ignore[attr-defined]  # a note of the test's own
         digest_ = getattr(proof, "history", None)
@@ -195,6 +231,8 @@ def lines_checked_once() -> Iterator[None]:
         "over",
         "stance",
         "several",
+        "sidestepping",
+        "mirrored",
     ],
 )
 def entries(request: pytest.FixtureRequest) -> dict[str, Any]:

@@ -2,7 +2,9 @@
 
 from __future__ import annotations
 
+from collections.abc import Sequence
 from fractions import Fraction
+from itertools import zip_longest
 from typing import Any
 
 from rich.console import Console, Group, RenderableType
@@ -19,8 +21,13 @@ MOST = 12  # rows of cells
 STYLES = {"proved": "bold green", "refuted": "bold red", "undecided": "bold yellow"}
 
 
-def outcome(title: str, results: dict[str, Any], units: dict[str, str]) -> RenderableType:
-    """Quantities with what each gives away, then a row a requirement; `units` are the states'."""
+def outcome(
+    title: str, results: dict[str, Any], units: dict[str, str], asked: Sequence[str | None] = ()
+) -> RenderableType:
+    """Quantities with what each gives away, then a row a requirement; `units` are the states'.
+
+    `asked`: the stance that each requirement is about, where it is about one.
+    """
     quantities = Table(title=Text(title), title_justify="left", show_edge=False, pad_edge=False)
     for heading in ("quantity", "proved", "attained", "gives away", "unit"):
         quantities.add_column(heading)
@@ -44,11 +51,12 @@ def outcome(title: str, results: dict[str, Any], units: dict[str, str]) -> Rende
     verdicts = Table(show_edge=False, pad_edge=False)
     for heading in ("requirement", "verdict", "value"):
         verdicts.add_column(heading, overflow="fold")
-    for r in results["requirements"]:
+    for r, stance in zip_longest(results["requirements"], asked):
         row = Text(f"in [{_figure(r['value']['lower'], '')}, {_figure(r['value']['upper'], '')}]" if r["value"] else "")
         if r["limited_by"]:
             row.append(f"\n{r['limited_by']}")
-        verdicts.add_row(Text(r["that"]), Text(r["verdict"], STYLES[r["verdict"]]), row)
+        that = r["that"] + (f" in {stance}" if stance else "")
+        verdicts.add_row(Text(that), Text(r["verdict"], STYLES[r["verdict"]]), row)
     more = [*_routes(results, unit), *(_stances(stances, units, results["metric"] is None) if stances else [])]
     return Group(quantities, Text(where), *more, Text(""), verdicts, Text(""), Text(CAUTION))
 
