@@ -365,6 +365,8 @@ def test_every_line_is_needed(entries: dict[str, Any]) -> None:
 
         # a requirement over ranges of its own may rest on fewer lines than its whole proof has
         own = entries["proof"][gone - 1]["proves"].startswith("over[")
+        # of what is asked of several stances a point in one may say as much as a point in another
+        own |= ":require[" in entries["proof"][gone - 1]["proves"] and entries["proof"][gone - 1]["rule"] == "point"
         assert own or check(spoiled(entries, spoil)).status == "invalid", gone
 
 
@@ -530,7 +532,7 @@ def test_another_claim_is_rejected(entries: dict[str, Any]) -> None:
         ("kappa = 0.1 ", "kappa = 0.02 "), ("kappa = 0.09", "kappa = 0.01"), ("kappa = 0.3 ", "kappa = 0.05 "),
         ("T = { range = [0.36, 0.40]", "T = { range = [0.30, 0.40]"), ("[0.37, 0.38]", "[0.32, 0.46]"),
         ("d = [-0.05, 0.05]", "d = [-0.09, 0.05]"), ("values = [0.1, 0.2]", "values = [0.1, 0.2, 2]"),
-        ("change = 0.01", "change = 0.05"), ("change = 0.005", "change = 0.05"), ("limit = 0.035", "limit = 0.01"), ("kappa = 0.6", "kappa = 0.2"), ("kappa = [0.4, 0.6]", "kappa = [0.1, 0.6]"), ("d = [-0.2, 0.2]", "d = [-0.4, 0.2]"), ("kappa = 0.3\n", "kappa = 0.1\n"), ('correction = ["shift"]', ""), ("g = 9.81", "g = 9.5"), ("T = [0.40, 0.41]", "T = [0.39, 0.41]"), ("[-0.05, 0.05], within", "[-0.06, 0.05], within"), ("loss = [0.024, 0.026]", "loss = [0.02, 0.026]"), ("x <= 0.5", "x <= 0.05"), ("range = [-0.2, 1.0]", "range = [-0.1, 0.9]"),
+        ("slip = [-0.003, 0.003]", "slip = [-0.03, 0.003]"), ("change = 0.02", "change = 0.05"), ("change = 0.01", "change = 0.05"), ("change = 0.005", "change = 0.05"), ("limit = 0.035", "limit = 0.01"), ("kappa = 0.6", "kappa = 0.2"), ("kappa = [0.4, 0.6]", "kappa = [0.1, 0.6]"), ("d = [-0.2, 0.2]", "d = [-0.4, 0.2]"), ("kappa = 0.3\n", "kappa = 0.1\n"), ('correction = ["shift"]', ""), ("g = 9.81", "g = 9.5"), ("T = [0.40, 0.41]", "T = [0.39, 0.41]"), ("[-0.05, 0.05], within", "[-0.06, 0.05], within"), ("loss = [0.024, 0.026]", "loss = [0.02, 0.026]"), ("x <= 0.5", "x <= 0.05"), ("range = [-0.2, 1.0]", "range = [-0.1, 0.9]"),
     ] if a in text]  # fmt: skip
     assert harder
     for old, new in harder:

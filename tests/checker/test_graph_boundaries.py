@@ -56,12 +56,14 @@ class Steps(Draft):
     def metric(self, stance: str, kind: str = "box", rows: Any = (("1",),), inverse: Any = (("1",),)) -> int:
         return self.line("metric", f"{stance}:metric", [], {"kind": kind, "rows": [list(r) for r in rows], "inverse": [list(r) for r in inverse]})
 
+    form = "d"
+
     def matrix(self, proves: str, norm: str, uses: Sequence[int]) -> int:
-        return self.line("matrix", proves, uses, {"bits": 0, "trees": ["d"]}, norm=norm)
+        return self.line("matrix", proves, uses, {"bits": 0, "trees": [self.form]}, norm=norm)
 
     def table(self, proves: str, values: dict[str, str], uses: Sequence[int], before: Any = None, after: Any = None) -> int:
         one = {"rows": [["1"]], "inverse": [["1"]]}
-        return self.line("graph-entries", proves, uses, {"bits": 0, "trees": ["d"], "before": before or one, "after": after or one}, **values)
+        return self.line("graph-entries", proves, uses, {"bits": 0, "trees": [self.form], "before": before or one, "after": after or one}, **values)
 
     def stretch(self, proves: str, at: dict[str, str], lower: str, uses: Sequence[int], direction: Sequence[str] = ("1",)) -> int:
         return self.line("stretch", proves, uses, {"at": at, "bits": 0, "direction": list(direction)}, lower=lower)
@@ -164,7 +166,7 @@ IN_REGIONS = [
     ("steps(x, 1, 13/8) <= 0", "proved"), (f"steps(x, 1, 13/8 - 1{STEP}) <= 0", "undecided"), ('"steps(x, 1, 1) <= 2"\nin = "left"', "proved"), ('"steps(x, 1, 1) <= 1"\nin = "left"', "undecided"), ('"steps(x, 1, 1) <= 1"\nin = "right"', "proved"),
     ('"steps(x, 1, 53/64) <= 2"\nin = "left"', "proved"), (f'"steps(x, 1, 53/64 - 1{STEP}) <= 2"\nin = "left"', "undecided"), ('"steps(x, 1, 19/32) <= 1"\nin = "right"', "proved"), (f'"steps(x, 1, 19/32 - 1{STEP}) <= 1"\nin = "right"', "undecided"),
     ("steps(x, 1, 7/20) <= 99", "undecided"), ("steps(x, 3/20, 7/20) <= 0", "proved"), (f"steps(x, 3/20 + 1{STEP}, 7/20) <= 0", "undecided"), ('"steps(x, 3/20, 7/20) <= 0"\nin = "left"', "proved"), (f"steps(x, 1 + 1{STEP}, 13/8) <= 9", "undecided"), (f'"steps(x, 1 + 1{STEP}, 13/8) <= 9"\nin = "right"', "proved"),
-    ("steps(x, 1, 1/10) <= 20000", "undecided"), ('"push(x) >= 0"\nover = { p = [0, 0] }', "undecided"), ('"settles"\nin = "left"', "proved"), ('"settles"\nin = "right"', "proved"), ("value(2) <= 2", "proved"),
+    ("steps(x, 1, 1/10) <= 20000", "undecided"), ('"push(x) >= 0"\nover = { p = [0, 0] }', "undecided"), ('"settles"\nin = "left"', "proved"), ('"settles"\nin = "right"', "proved"), ("value(2) <= 2", "proved"), ('"value(2) < 3"\nin = "left"', "proved"), ('"value(2) < 3"\nin = "right"', "undecided"),
 ]
 FIGURES: dict[str, tuple[str | None, str | None]] = {
     "gain": ("3/2", "3/2"), "residual": ("1/8", "1/8"), "radius": ("1", "1"), "set radius": ("1", "1"), "set centre x": ("0", "0"), "sharp_bound": (None, None),
@@ -178,8 +180,8 @@ NEARLY = str(Q(7, 20) - Q(1, 10**40))  # the bound from below, as far as the ste
 
 def value_lines(d: Steps, asked: Sequence[tuple[str, str]], on: int) -> None:
     for n, (that, _) in enumerate(asked, 1):
-        if that.startswith("value(2)"):
-            for name in ("left", "right"):
+        if "value(2)" in that:
+            for name in ("left", "right") if that.startswith("value") else ("left",) if "left" in that else ():
                 d.range(f"{name}:require[{n}]", "2", "2", [on])
 
 
@@ -293,6 +295,20 @@ def in_balls() -> None:
     for name, options in (("no point that leaves", {"escape": False}), ("one of them smaller", {"small": True, "escape": False})):
         judged(f"smaller balls: {name}", balls([that for that, _ in IN_BALLS], **options).found("smaller ball", small))
         judged(f"smaller balls that count: {name}", balls([that for that, _ in IN_BALLS], top="shrink = true", **options).found("smaller ball", IN_BALLS))
+    edges = balls(escape=False)
+    for n, (at, value) in enumerate((({"x": "7/3", "p": "1/8"}, "1"), ({"x": "-1", "p": "-1/8"}, "-1/2"))):
+        d = balls(escape=False)
+        d.point("left:image[x]", at, value)
+        reject(f"a point on the edge or inside leads nowhere {n}", d.found("ball", [("settles", "proved")]), "results", "'ball' is claimed, 'smaller ball' was derived")
+    d = Steps(edges.text.replace('3*x/8 + p', '-3*x/8 + p'))
+    d.proof = edges.proof
+    for at, value in (({"x": "7/3", "p": "-1/8"}, "-1"),):
+        d.point("left:image[x]", at, value)
+    reject("a point on the lower edge leads nowhere", d.found("ball", [("settles", "proved")]), "results", "'ball' is claimed, 'smaller ball' was derived")
+    below = Steps(d.text)
+    below.proof = [*edges.proof]
+    below.point("left:image[x]", {"x": "3", "p": "-1/8"}, "-5/4")
+    accept("a point below the lower edge", below.found("ball", [("settles", "proved")]))
     good = balls().found("ball", [("settles", "proved")])
     exact("balls", good, {"set radius": ("3/4", "3/4"), "set centre x": ("0", "1/4"), "stances right set centre x": ("1/4", "1/4"), "stances left states x bound": (None, "6/13"), "stances right states x push": ("21/104", None), "requirements 0 value": (None, "57/104")})
     where = next(n for n, line in enumerate(good["proof"]) if line["rule"] == "graph-balls")
@@ -353,8 +369,163 @@ def rounded_up(checker: Any) -> None:
     assert o.rounded(exact) == exact and long < o.rounded(long) <= Q(1, 2**160) and o.rounded(Q(1, 2**2000)) > Q(1, 2**2000) and o.rounded(Q(1, 2**1999)) == Q(1, 2**1999)
 
 
+# two states, norms of their own: max(|x|, 2|y|) on the left, |2x + y| and |2x − y| on the right, where y is named first
+
+WEIGHTS, UNWEIGHTED = [["1", "0"], ["0", "2"]], [["1", "0"], ["0", "1/2"]]
+SLANTED, UPRIGHT = [["2", "1"], ["2", "-1"]], [["1/4", "1/4"], ["1/2", "-1/2"]]
+ONE = [["1", "0"], ["0", "1"]]
+NORMS = {"kind": "box", "weights": {"x": "1", "y": "2"}}, {"kind": "polytope", "matrix": SLANTED}
+
+
+def two(asked: Sequence[str] = ("settles",), top: str = "") -> Steps:
+    """Lines: 1 8 metrics, 2 3 9 10 targets, 4 11 points, 5 12 balls, 6 7 13 14 images, 15 invariant, 16 17 19 20 matrices, 18 21 pairs, 22 bound, 23 to 26 entries, 27 comparison,
+    28 to 31 stretches."""
+    text = f'format = 1\n{top}\n[uncertain]\np = ["-1/8", "1/8"]\nq = ["-1/16", "1/16"]\n[next]\nx = "x/2 + y/4 + p"\ny = "x/4 + y/4 + q"\n[target]\nx = 0\ny = 0\n'
+    text += '[stance.left]\nthen = "right"\nstate = { x = [-1, 1], y = [-1, 1] }\n[stance.right]\nthen = "left"\nstate = { y = [-1, 1], x = [-1, 1] }\n'
+    d = Steps(text + "".join(f"[[require]]\nthat = {r}\n" if r.startswith('"') else f'[[require]]\nthat = "{r}"\n' for r in asked))
+    sets: list[int] = []
+    for name, kind, rows, inverse, edge in (("left", "box", WEIGHTS, UNWEIGHTED, "x"), ("right", "polytope", SLANTED, UPRIGHT, "y")):
+        norm = d.metric(name, kind, rows, inverse)
+        targets = [d.range(f"{name}:target[{s}]", "0", "0") for s in "xy"]
+        at = d.point(f"{name}:target[{edge}]", {}, "0")
+        d.theorem("largest-ball", f"{name}:ball", [norm, *targets, at], radius="1", outer="1")
+        sets += [norm, *targets, d.range(f"{name}:image[x]", "-7/8", "7/8"), d.range(f"{name}:image[y]", "-9/16", "9/16")]
+    invariant = d.theorem("graph-regions", "invariant", sets)
+    pairs, tables = [], []
+    for e, k, miss, norm in (("left>right", "13/8", "5/16", sets[5]), ("right>left", "1/2", "1/8", sets[0])):
+        pairs.append(d.theorem("slope", f"{e}:slope", [d.matrix(f"{e}:slopes", k, [invariant, norm]), d.matrix(f"{e}:misses", miss, [invariant, norm])], gain=k, residual=miss))
+    d.bound([invariant, *pairs], {"left": "1", "right": "7/4"}, {"left": "3/2", "right": "11/4"}, left="3/2", right="11/4")
+    plain = {"rows": ONE, "inverse": ONE}
+    for e, norm in (("left>right", sets[5]), ("right>left", sets[0])):
+        tables.append(d.table(f"{e}:slopes", {"1,1": "1/2", "1,2": "1/4", "2,1": "1/4", "2,2": "1/4"}, [invariant, norm], plain, plain))
+        tables.append(d.table(f"{e}:misses", {"1,1": "1/8", "2,1": "1/16"}, [invariant, norm], plain, plain))
+    p, b = ["2", "1"], ["7/20", "1/5"]
+    d.line("graph-componentwise", "componentwise", [invariant, *tables], {"p": {"left": p, "right": p}, "b": {"left": b, "right": b}}, **{f"{s}:{x}": y for s in ("left", "right") for x, y in (("x", "7/20"), ("y", "1/5"))})
+    d.stretch("left>right:slopes", {"x": "1", "y": "1", "p": "0", "q": "0"}, "13/8", [invariant, sets[5]], ["1", "1/2"])
+    d.stretch("left>right:misses", {"p": "1/8", "q": "1/16"}, "5/16", [invariant, sets[5]])
+    d.stretch("right>left:slopes", {"x": "1", "y": "1", "p": "0", "q": "0"}, "1/2", [invariant, sets[0]], ["0", "1"])
+    d.stretch("right>left:misses", {"p": "1/8", "q": "0"}, "1/8", [invariant, sets[0]])
+    return d
+
+
+def two_states() -> None:
+    asked = [("settles", "proved"), ("gain <= 13/8", "proved"), ("gain < 13/8", "undecided"), ("residual <= 5/16", "proved"), ("residual < 5/16", "undecided"), ("bound <= 11/4", "proved"), ("bound < 11/4", "undecided"), ("bound(x) <= 7/20", "proved"), ("bound(x) < 7/20", "undecided"),
+             ("bound(y) <= 1/5", "proved"), ('"bound(y) < 1/5"\nin = "right"', "undecided"), ("radius(y) >= 1", "proved"), ("push(y) >= 4/5", "undecided"), (f"push(y) > 4/5 - 1{STEP}", "proved"), ("steps(y, 1, 1) <= 0", "undecided")]
+    judged("two states", two([a for a, _ in asked]).found("region", asked, NORMS, "xy"))
+    good = two().found("region", [("settles", "proved")], NORMS, "xy")
+    exact("two states", good, {"gain": ("13/8", "13/8"), "residual": ("5/16", "5/16"), "states x bound": (None, "7/20"), "states y bound": (None, "1/5"), "stances right states y push": ("4/5", None), "requirements 0 value": (None, "9/10")})
+    other = but(good, "results stances left metric", NORMS[1])
+    reject("another norm on the left", other, "results", "results.stances.left.metric")
+    reject("one norm for both", but(good, "results metric", NORMS[0]), "results", "results.metric")
+    reject("no stances", but(good, "results stances", GONE), "results", "the keys are")
+    reject("one stance", but(good, "results stances right", GONE), "results", "results.stances: the keys are left, right")
+    reject("a stance without its set", but(good, "results stances right set", None), "results", "results.stances.right.set: the keys are")
+    by_norm = without(good, 27, 26, 25, 24, 23)
+    exact("two states by the norm", but(by_norm, "results requirements 0 verdict", "undecided"), {"stances left states x bound": (None, "3/2"), "stances left states y bound": (None, "3/4"), "stances right states x bound": (None, "11/8"), "stances right states y bound": (None, "11/4")})
+    reject("not settled by the norm", by_norm, "results", "[1].verdict: proved is claimed, undecided was derived")
+    other = {"kind": "ellipsoid", "rows": SLANTED, "inverse": UPRIGHT}
+    mixed = next(n for n, x in enumerate(good["proof"]) if x["proves"] == "right:metric")
+    reject("lengths of two kinds", but(good, f"proof {mixed} witness", other, "proof 11 concludes outer", "2"), f"proof line {next(n for n, x in enumerate(good['proof'], 1) if x['rule'] == 'matrix')}", "Euclidean lengths and largest magnitudes")
+
+
+def moving() -> None:
+    """Held c, which moves by up to 1/16 a step: the target c of the left by 1/16, that of the right, −2c, by 1/8."""
+    d = Steps(claim("-2*c + (x - c)/2 + p", "c + (x + 2*c)/4 + q", ("[-1, 1]", "[-1, 1]"), ("settles",), ("c", "-2*c"),
+                    rest='p = ["-1/8", "1/8"]\nq = ["-1/16", "1/16"]\nc = { range = [0, "1/8"], held = true, change = "1/16" }'))
+    sets: list[int] = []
+    d.form = "c"
+    for name, ends, at, room, image in (("left", ("0", "1/8"), "1/8", "7/8", ("-15/16", "5/8")), ("right", ("-1/4", "0"), "-1/4", "3/4", ("-5/16", "1/2"))):
+        norm, target = d.metric(name), d.range(f"{name}:target[x]", *ends)
+        d.theorem("largest-ball", f"{name}:ball", [norm, target, d.point(f"{name}:target[x]", {"c": "1/8"}, at)], radius=room, outer=room)
+        sets += [norm, target, d.range(f"{name}:image[x]", *image)]
+    kept = d.theorem("graph-regions", "invariant", sets)
+    moves = [d.range("left:target-slope[x,c]", "1", "1"), d.range("right:target-slope[x,c]", "-2", "-2")]
+    pairs, tables = [], []
+    for e, k, miss, residual, norm, move in (("left>right", "1/2", "1/8", "1/4", sets[3], moves[1]), ("right>left", "1/4", "1/16", "1/8", sets[0], moves[0])):
+        pairs.append(d.theorem("slope", f"{e}:slope", [d.matrix(f"{e}:slopes", k, [kept, norm]), d.matrix(f"{e}:misses", miss, [kept, norm]), move], gain=k, residual=residual))
+        tables += [d.table(f"{e}:slopes", {"1,1": k}, [kept, norm]), d.table(f"{e}:misses", {"1,1": miss}, [kept, norm])]
+    b = {"left": "3/14", "right": "5/14"}
+    d.bound([kept, *pairs], {"left": "1", "right": "1"}, b, **b)
+    d.line("graph-componentwise", "componentwise", [kept, *tables, *moves], {"p": {s: ["1"] for s in b}, "b": {s: [x] for s, x in b.items()}}, **{f"{s}:x": x for s, x in b.items()})
+    good = d.found("region", [("settles", "proved")])
+    exact("a target that moves", good, {"gain": (None, "1/2"), "residual": (None, "1/4"), "stances left states x bound": (None, "3/14"), "stances right states x bound": (None, "5/14"), "set radius": ("3/4", "3/4"), "stances left set radius": ("7/8", "7/8")})
+    tight("a target that moves", good, {n: (("residual", -1, "less than what the lines used show"),) for n in pairs})
+    for e, line in zip(("left>right", "right>left"), pairs, strict=True):
+        uses = good["proof"][line - 1]["uses"]
+        reject(f"the move of the other target, {e}", but(good, f"proof {line - 1} uses", [*uses[:2], moves[0] if uses[2] == moves[1] else moves[1]]), f"proof line {line}", "lines about")
+        reject(f"no move, {e}", but(good, f"proof {line - 1} uses", uses[:2]), f"proof line {line}", "slope rests on")
+    last = len(good["proof"])
+    for s in ("left", "right"):
+        reject(f"a comparison by a hair less, {s}", but(good, f"proof {last - 1} witness b {s} 0", hair(b[s], -1)), f"proof line {last}", "K p < p and K b + residual <= b")
+        reject(f"a bound by a hair less, {s}", but(good, f"proof {last - 2} witness b {s} 0", hair(b[s], -1)), f"proof line {last - 1}", "K p < p and K b + residual <= b")
+    reject("moves in another order", but(good, f"proof {last - 1} uses", [kept, *tables, *moves[::-1]]), f"proof line {last}", "lines about")
+
+
+def at_rest() -> None:
+    """No residual, and so a bound of 0."""
+    good = regions().found("region", [("settles", "proved")])
+    still = but(good, "claim text", good["claim"]["text"].replace("+ p", "+ 0*p").replace("x/4 + q", "0*x + 0*q"))
+    for line in still["proof"]:
+        if "misses" in line["proves"]:
+            line["concludes"] = dict.fromkeys(line["concludes"], "0")
+        if line["proves"] == "right>left:slopes":
+            line["concludes"] = dict.fromkeys(line["concludes"], "0")
+        if line["rule"] == "slope":
+            line["concludes"] = {"gain": "3/2" if "left>" in line["proves"] else "0", "residual": "0"}
+        if line["rule"] in ("graph-bound", "graph-componentwise"):
+            line["witness"]["b"], line["concludes"] = {"left": ["0"], "right": ["0"]}, dict.fromkeys(line["concludes"], "0")
+    exact("at rest", still, {"bound": ("0", "0"), "gain": ("3/2", "3/2"), "residual": ("0", "0"), "states x push": ("1", None)})
+
+
+def without(entries: Entries, *lines: int) -> Entries:
+    """A certificate without some lines, which nothing else rests on; later ones renumbered."""
+    found = but(entries)
+    for gone in sorted(lines, reverse=True):
+        del found["proof"][gone - 1]
+        for line in found["proof"]:
+            line["uses"] = [n - (n > gone) for n in line["uses"]]
+    return found
+
+
+STILL = {"cuts": {}, "pieces": ["0", "1"], "degrees": [1, 0], "bits": 24, "cells": [["16777216 0"]]}
+
+
+def of_the_ground() -> None:
+    """The same regions, x standing still for a second on either foot."""
+    plain = regions().found("region", [("settles", "proved")])
+    text = plain["claim"]["text"].replace("3*x/2 + p", "3*X/2 + p").replace("x/4 + q", "X/4 + q")
+    text = text.replace("[stance.left]", '[dynamics]\nduration = 1\n[dynamics.start]\nX = "x"\n[dynamics.rate]\nX = "0*X"\n[stance.left]')
+    proof = [{"rule": "trajectory", "proves": f"{s}:flow", "uses": [], "witness": STILL, "concludes": {"error": "0"}} for s in ("left", "right")]
+    flows = {"left": 1, "right": 2}
+    for line in plain["proof"]:
+        part, _, name = line["proves"].rpartition(":")
+        flow = [flows[part.partition(">")[0]]] if name.startswith(("image", "slopes", "misses")) else []
+        witness = {**line["witness"], "bits": 24} if flow else line["witness"]
+        proof.append({**line, "uses": [n + 2 for n in line["uses"]] + flow, "witness": witness})
+    for s in ("left", "right"):
+        proof.append({"rule": "range", "proves": f"{s}:support[1]", "uses": [13], "witness": {"bits": 0, "trees": ["d"]}, "concludes": {"lower": "1", "upper": "1"}})
+    good = but(plain, "claim text", text, "proof", proof)
+    judged("on the ground", good)
+    exact("on the ground", good, {"gain": ("3/2", "3/2"), "residual": ("1/8", "1/8"), "stances left states x bound": (None, "3/20")})
+    for n, line in enumerate(proof, 1):
+        part, _, name = line["proves"].rpartition(":")
+        if name.startswith(("image", "slopes", "misses")):
+            other = 2 if line["uses"][-1] == 1 else 1
+            reject(f"the flow of another stance, {n}", but(good, f"proof {n - 1} uses", [*line["uses"][:-1], other]), f"proof line {n}", "lines about" if "image" in name else "uses: the set of the stance")
+            reject(f"without the flow, {n}", but(good, f"proof {n - 1} uses", line["uses"][:-1]), f"proof line {n}", "no trajectory is proved")
+    for n in (len(proof) - 1, len(proof)):
+        for lower in ("0", "-1"):
+            reject(f"a stance that may not last, {n} {lower}", but(good, f"proof {n - 1} concludes lower", lower), "results", "results.set.kind: 'region' is claimed, None was derived")
+        accept(f"a stance that may be short, {n}", but(good, f"proof {n - 1} concludes lower", hair("0", 1)))
+        reject(f"a stance that may not last, {n}", without(good, n), "results", "results.set.kind: 'region' is claimed, None was derived")
+
+
 in_regions()
 what_is_kept()
+two_states()
+moving()
+at_rest()
+of_the_ground()
 in_balls()
 stepping_where()
 # fmt: on
