@@ -301,7 +301,7 @@ def in_balls() -> None:
         d.point("left:image[x]", at, value)
         reject(f"a point on the edge or inside leads nowhere {n}", d.found("ball", [("settles", "proved")]), "results", "'ball' is claimed, 'smaller ball' was derived")
     d = Steps(edges.text.replace('3*x/8 + p', '-3*x/8 + p'))
-    d.proof = edges.proof
+    d.proof = [*edges.proof]
     for at, value in (({"x": "7/3", "p": "-1/8"}, "-1"),):
         d.point("left:image[x]", at, value)
     reject("a point on the lower edge leads nowhere", d.found("ball", [("settles", "proved")]), "results", "'ball' is claimed, 'smaller ball' was derived")
@@ -449,7 +449,7 @@ def moving() -> None:
     d.line("graph-componentwise", "componentwise", [kept, *tables, *moves], {"p": {s: ["1"] for s in b}, "b": {s: [x] for s, x in b.items()}}, **{f"{s}:x": x for s, x in b.items()})
     good = d.found("region", [("settles", "proved")])
     exact("a target that moves", good, {"gain": (None, "1/2"), "residual": (None, "1/4"), "stances left states x bound": (None, "3/14"), "stances right states x bound": (None, "5/14"), "set radius": ("3/4", "3/4"), "stances left set radius": ("7/8", "7/8")})
-    tight("a target that moves", good, {n: (("residual", -1, "less than what the lines used show"),) for n in pairs})
+    tight("a target that moves", good, dict.fromkeys(pairs, (("residual", -1, "less than what the lines used show"),)))
     for e, line in zip(("left>right", "right>left"), pairs, strict=True):
         uses = good["proof"][line - 1]["uses"]
         reject(f"the move of the other target, {e}", but(good, f"proof {line - 1} uses", [*uses[:2], moves[0] if uses[2] == moves[1] else moves[1]]), f"proof line {line}", "lines about")
