@@ -205,13 +205,13 @@ class Battery:
                     self.questions[name](package)
             return None
         except (Exception, TooLong):
+            if name in self.questions:
+                self.order.remove(name)
+                self.order.insert(0, name)
             return name
         finally:
             signal.setitimer(signal.ITIMER_REAL, 0)
             signal.signal(signal.SIGALRM, before)
-            if name in self.questions:
-                self.order.remove(name)
-                self.order.insert(0, name)
 
 
 # (module, function, expression, what it became): why no verdict, place or reason changes
@@ -279,7 +279,9 @@ EQUIVALENT: dict[Key, str] = {
     ("several", "gone_through", "count <= KEPT", "count < KEPT"): "how many leaves are kept to save time changes no leaf",
     ("several", "gone_through", "count <= KEPT", "count < KEPT (2)"): "as above",
     ("several", "gone_through", "count <= KEPT", "count > KEPT (2)"): "leaves that are not kept are evaluated anew",
-    ("flows", "spread", "x >> zeros", "-(-x >> zeros)"): "only zeros are shifted out",
+    ("flows", "shifted_to", "x >> zeros", "-(-x >> zeros)"): "only zeros are shifted out",
+    ("flows", "Flows._enclosed", "len(self._found) == MOST_KEPT", "len(self._found) != MOST_KEPT"):
+        "how many enclosures are kept to save time changes none of them",
     ("flows", "divisions", "lines[0] < g < lines[-1]", "lines[0] <= g < lines[-1]"): "the first cut is among the cuts",
     ("flows", "divisions", "lines[0] < g < lines[-1]", "lines[0] < g <= lines[-1]"): "the last cut is among the cuts",
     ("flows", "divisions", "set(inside) <= set(lines)", "set(inside) < set(lines)"): "the ends are no lines inside",

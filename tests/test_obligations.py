@@ -99,6 +99,15 @@ for several in SEVERAL:
     PROVABLE.append(Case(f"several: {several}", SEVERAL[several], True, table))
 
 
+def farther(case: Case, steps: int) -> Case:
+    return replace(case, name=f"{steps} steps: {case.name}", text=f"horizon = {steps}\n{case.text}")
+
+
+FEW = [c for c in PROVABLE if "horizon" not in c.text]
+LATER = [farther(c, 3) for c in (*FEW[::4], *FEW[-2:])]
+PROVABLE += [c for c in LATER if not_yet(parse_claim(c.text, c.settings, c.data, "c")) is None]
+
+
 def spelled_out(graph: list[tuple[str, tuple[int, ...], object]], root: int) -> tuple[object, ...]:
     """The terms a root is built from, numbered alike on both sides: arguments first, from left to right."""
     number: dict[int, int] = {}
@@ -138,6 +147,8 @@ def test_both_lists_mean_the_same(case: Case, ball: bool) -> None:
         theirs = replace(theirs, targets=spans, metric=norm, beyond=Fraction(1, 16))
     listed: list[Obligation] = [q for s in states for q in (o.target(s), o.image(s), o.miss(s))]
     listed += [o.slope(mine, s, x) for s in states for x in states]
+    early = range(1, claim.horizon) if claim.horizon < 9 else (1, 17)
+    listed += [q for j in early for s in states for q in (o.miss(s, j), o.slope(mine, s, s, j))]
     listed += [o.target_slope(h, s) for s in states for h in o.moving(s)]
     listed += [o.requirement(n, mine) for n, r in enumerate(claim.requirements, 1) if r.kind in RANGED]
     radii = (Fraction(1, 16), Fraction(1, 8))
@@ -157,10 +168,14 @@ def test_both_lists_mean_the_same(case: Case, ball: bool) -> None:
     assert [o.region(s) for s in states] == [d.region(s) for s in states]
 
 
+@pytest.mark.parametrize("horizon", [1, 2])
 @pytest.mark.parametrize("name", PARTS)
-def test_both_lists_mean_the_same_stance(name: str) -> None:
+def test_both_lists_mean_the_same_stance(name: str, horizon: int) -> None:
     """Matrix, free term, signals, what has to be positive, and the obligations that only stances have."""
-    claim = parse_claim(PARTS[name], {}, {"gaits.csv": GAITS} if "gaits.csv" in PARTS[name] else {}, "c")
+    if horizon > 1 and "within = true" in PARTS[name]:
+        pytest.skip("signals are followed for one step at a time")
+    text = f"horizon = {horizon}\n{PARTS[name]}"
+    claim = parse_claim(text, {}, {"gaits.csv": GAITS} if "gaits.csv" in PARTS[name] else {}, "c")
     o = Obligations(claim)
     d = Derivation(read_statement(claim.text, claim.settings, claim.data))
     mine, theirs = o.motion, d.motion
@@ -188,6 +203,9 @@ def test_both_lists_mean_the_same_stance(name: str) -> None:
         listed += [o.requirement(n, domain) for n, r in enumerate(claim.requirements, 1) if r.kind in RANGED]
         listed += [o.growth(domain)] if any(r.during for r in claim.requirements) else []
         listed += [o.split_slope(domain), o.split_residual(domain)] if claim.correction else []
+        routes = ("slope", "split")[: 2 if claim.correction else 1] if o.motion and o.motion.signals else ()
+        listed += [o.under_any_course(domain, parts, route) for route in routes for parts in (1, 3)]
+        assert [o.loose(route) for route in routes] == [d.loose(route) for route in routes]
         for obligation in listed:
             meaning = d.meaning(obligation.name, other_domain)
             assert [(v.name, v.cells, v.inside) for v in obligation.variables] == [
@@ -226,7 +244,7 @@ def test_both_lists_mean_the_same_between_stances(case: Case, ball: bool) -> Non
         ]
         for t in stance.then:
             after = next(s for s in claim.stances if s.name == t)
-            listed += [(g.between[f"{stance.name}>{t}"], o.miss(s, after)) for s in o.states]
+            listed += [(g.between[f"{stance.name}>{t}"], o.miss(s, 0, after)) for s in o.states]
         gates = [(x.op, x.args, x.value if x.op in ("number", "power") else x.name or None) for x in o.graph.gates]
         for derivation, obligation in listed:
             meaning = derivation.meaning(obligation.name, theirs)

@@ -5,6 +5,7 @@ from __future__ import annotations
 import copy
 import hashlib
 import json
+import re
 import subprocess
 import sys
 import time
@@ -16,11 +17,13 @@ from typing import Any
 
 import pytest
 
+import ultibound.checker
 from tests.conftest import proved
 from tests.stances import GAITS, HEIGHT, LIBRARY, PUSHING, stance
 from ultibound.checker import check
 from ultibound.checker.document import canonical, digest
 from ultibound.checker.rules import Line, Proof, Rejected
+from ultibound.checker.statement import Statement
 from ultibound.claim import parse_claim
 from ultibound.prove import Attempt
 
@@ -140,6 +143,27 @@ gap = 0.1
 """
 
 
+GROWING = """
+format = 1
+[state]
+x = [-1, 1]
+y = [-1, 1]
+[uncertain]
+q = { values = [0, 1] }
+h = { range = [0, 0.1], held = true, change = 0.01 }
+[next]
+x = "h + (x - h + q*sin(y))/1.3"
+y = "((1 - q)*(x - h) + y)/1.3"
+[target]
+x = "h"
+y = 0
+[[require]]
+that = "gain < 1"
+[effort]
+gap = 0.1
+"""
+
+
 def stances() -> str:
     """A stance over two cells of a library, with a gust, a push and a limit throughout."""
     return stance(
@@ -150,11 +174,21 @@ def stances() -> str:
     )  # fmt: skip
 
 
+def courses() -> str:
+    """A gust whose effect the state weighs: what it does over any course is bounded part by part."""
+    return stance(
+        rates='y = "gust*(1 + v*(t - 0.5))"', start='y = "0.3*v"', duration="1", define="", state="[-0.5, 0.5]", step="y", target="0",
+        uncertain="gust = { range = [-0.1, 0.1], within = true }", requires=("gain < 0.35", "settles"),
+    )  # fmt: skip
+
+
 def sample(name: str) -> dict[str, Any]:
+    if name == "courses":
+        return proved(courses()).entries
     if name == "stance":
         return proved(stances(), data={"gaits.csv": GAITS}).entries
-    if name in ("split", "over"):
-        return proved(SPLIT if name == "split" else OVER).entries
+    if name in ("split", "over", "growing"):
+        return proved({"split": SPLIT, "over": OVER, "growing": GROWING}[name]).entries
     if name == "several":
         text = (EXAMPLES / "recentring.toml").read_text().replace("[0.36, 0.42]", "[0.38, 0.40]")
         return proved(text + "[effort]\ngap = 0.1\n").entries
@@ -183,14 +217,22 @@ def sample(name: str) -> dict[str, Any]:
 
 @pytest.fixture(scope="module", autouse=True)
 def lines_checked_once() -> Iterator[None]:
-    """Lines that come after exactly the same claim and lines are not verified anew: only what follows a change is."""
+    """A claim is read once, and lines after exactly the same claim and lines are not verified anew: only what follows
+    a change is."""
     known: dict[str, tuple[Line | Rejected, int]] = {}
-    real = Proof.add
+    claims: dict[str, Statement] = {}
+    real, reading = Proof.add, ultibound.checker.read_statement
+
+    def read(text: str, settings: dict[str, str], files: dict[str, str]) -> Statement:
+        key = json.dumps([text, settings, files])
+        if key not in claims:
+            claims[key] = reading(text, settings, files)
+        return claims[key]
 
     def add(proof: Proof, raw: Any) -> None:
-        claim = proof.derivation.statement if proof.graph is None else proof.graph.statement
         if not proof.lines:
-            proof.history = hashlib.sha256(repr(claim).encode())  # type: ignore[attr-defined]  # a note of the test's own
+            claim = repr(proof.derivation.statement if proof.graph is None else proof.graph.statement)
+            proof.history = hashlib.sha256(claim.encode())  # type: ignore[attr-defined]  # a note of the test's own
         digest_ = getattr(proof, "history", None)
         if digest_ is None:  # lines in the making
             real(proof, raw)
@@ -212,9 +254,10 @@ def lines_checked_once() -> Iterator[None]:
         proof.lines[len(proof.lines) + 1] = found
         proof.leaves += leaves
 
-    Proof.add = add  # type: ignore[method-assign]  # put back below
-    yield
-    Proof.add = real  # type: ignore[method-assign]  # as it was
+    with pytest.MonkeyPatch.context() as patch:
+        patch.setattr(Proof, "add", add)
+        patch.setattr(ultibound.checker, "read_statement", read)
+        yield
 
 
 @pytest.fixture(
@@ -230,9 +273,11 @@ def lines_checked_once() -> Iterator[None]:
         "split",
         "over",
         "stance",
+        "courses",
         "several",
         "sidestepping",
         "mirrored",
+        "growing",
     ],
 )
 def entries(request: pytest.FixtureRequest) -> dict[str, Any]:
@@ -255,7 +300,7 @@ def resealed(entries: dict[str, Any]) -> bytes:
 
 
 def spoiled(entries: dict[str, Any], change: Callable[[dict[str, Any]], None]) -> bytes:
-    changed = copy.deepcopy(entries)
+    changed = json.loads(json.dumps(entries))
     change(changed)
     return resealed(changed)
 
@@ -289,6 +334,31 @@ def test_the_schema_describes_it(entries: dict[str, Any]) -> None:
         changed = copy.deepcopy(entries)
         change(changed)
         assert list(validator.iter_errors(changed))
+
+
+def test_what_signals_of_any_course_rest_on() -> None:
+    entries = sample("courses")
+    number = next(n for n, x in enumerate(entries["proof"]) if x["proves"].startswith("signal-slope["))
+    parts = entries["proof"][number]["proves"]
+    assert parts == "signal-slope[4]" and check(resealed(copy.deepcopy(entries))).status == "valid"
+    for key, value, reason in (
+        ("proves", "signal-slope[1]", "signal-slope[1]: the range shown is wider than what is concluded"),
+        ("proves", "signal-slope[100]", "signal-slope[100] is no obligation of this claim"),
+        ("proves", "split-signal-slope[4]", "split-signal-slope[4] is no obligation of this claim"),
+        ("proves", "slope[v,v]", "proved"),
+        ("uses", entries["proof"][number]["uses"][:1], "no trajectory is proved"),
+        ("uses", entries["proof"][number]["uses"][1:], "needs a line that gives its set"),
+    ):
+
+        def spoil(e: dict[str, Any], key: str = key, value: Any = value) -> None:
+            e["proof"][number][key] = value
+
+        rejected(spoiled(entries, spoil), reason)
+
+    def bolder(e: dict[str, Any]) -> None:
+        e["claim"]["text"] = e["claim"]["text"].replace("[-0.1, 0.1], within", "[-0.11, 0.1], within")
+
+    rejected(spoiled(entries, bolder), "proof line")
 
 
 # Which way each number claims more.
@@ -371,9 +441,18 @@ def test_every_line_is_needed(entries: dict[str, Any]) -> None:
 
 
 def test_a_line_retargeted_is_rejected(entries: dict[str, Any]) -> None:
+    """Of names that differ in their number alone, as of shells, its neighbours, the first and the last."""
     names = sorted({line["proves"] for line in entries["proof"]})
+    families: dict[str, list[str]] = {}
+    for name in sorted(names, key=lambda n: (len(n), n)):
+        families.setdefault(re.sub(r"\[\d+\]$", "", name), []).append(name)
     for number, line in enumerate(entries["proof"]):
-        for name in [n for n in names if n != line["proves"]] + ["slope[v,w]", "require[99]", "require[0]", ""]:
+        mine = line["proves"]
+        others = ["slope[v,w]", "require[99]", "require[0]", ""]
+        for family in families.values():
+            k = family.index(mine) if mine in family else 0
+            others += {family[0], family[-1], *family[max(0, k - 1) : k + 2]} - {mine}
+        for name in others:
 
             def spoil(e: dict[str, Any], number: int = number, name: str = name) -> None:
                 e["proof"][number]["proves"] = name
@@ -506,7 +585,7 @@ def test_a_flow_spoiled_in_one_place_is_rejected() -> None:
         def bend(e: dict[str, Any], changed: list[str] = changed) -> None:
             e["proof"][number]["witness"]["cells"][0][0] = " ".join(changed)
 
-        if k % 7 == 0:
+        if k % 23 == 0:  # of each entry, of each power of time and of the cell's coordinates
             rejected(spoiled(entries, bend), f"proof line {number + 1}: error")
 
 
@@ -532,7 +611,7 @@ def test_another_claim_is_rejected(entries: dict[str, Any]) -> None:
         ("kappa = 0.1 ", "kappa = 0.02 "), ("kappa = 0.09", "kappa = 0.01"), ("kappa = 0.3 ", "kappa = 0.05 "),
         ("T = { range = [0.36, 0.40]", "T = { range = [0.30, 0.40]"), ("[0.37, 0.38]", "[0.32, 0.46]"),
         ("d = [-0.05, 0.05]", "d = [-0.09, 0.05]"), ("values = [0.1, 0.2]", "values = [0.1, 0.2, 2]"),
-        ("slip = [-0.003, 0.003]", "slip = [-0.03, 0.003]"), ("change = 0.02", "change = 0.05"), ("change = 0.01", "change = 0.05"), ("change = 0.005", "change = 0.05"), ("limit = 0.035", "limit = 0.01"), ("kappa = 0.6", "kappa = 0.2"), ("kappa = [0.4, 0.6]", "kappa = [0.1, 0.6]"), ("d = [-0.2, 0.2]", "d = [-0.4, 0.2]"), ("kappa = 0.3\n", "kappa = 0.1\n"), ('correction = ["shift"]', ""), ("g = 9.81", "g = 9.5"), ("T = [0.40, 0.41]", "T = [0.39, 0.41]"), ("[-0.05, 0.05], within", "[-0.06, 0.05], within"), ("loss = [0.024, 0.026]", "loss = [0.02, 0.026]"), ("x <= 0.5", "x <= 0.05"), ("range = [-0.2, 1.0]", "range = [-0.1, 0.9]"),
+        ("slip = [-0.003, 0.003]", "slip = [-0.03, 0.003]"), ("change = 0.02", "change = 0.05"), ("change = 0.01", "change = 0.05"), ("change = 0.005", "change = 0.05"), ("limit = 0.035", "limit = 0.01"), ("kappa = 0.6", "kappa = 0.2"), ("kappa = [0.4, 0.6]", "kappa = [0.1, 0.6]"), ("d = [-0.2, 0.2]", "d = [-0.4, 0.2]"), ("kappa = 0.3\n", "kappa = 0.1\n"), ('correction = ["shift"]', ""), ("g = 9.81", "g = 9.5"), ("T = [0.40, 0.41]", "T = [0.39, 0.41]"), ("[-0.05, 0.05], within", "[-0.06, 0.05], within"), ("[-0.1, 0.1], within", "[-0.11, 0.1], within"), ("loss = [0.024, 0.026]", "loss = [0.02, 0.026]"), ("x <= 0.5", "x <= 0.05"), ("range = [-0.2, 1.0]", "range = [-0.1, 0.9]"),
     ] if a in text]  # fmt: skip
     assert harder
     for old, new in harder:
@@ -649,31 +728,47 @@ def test_the_one_file_checker_agrees(entries: dict[str, Any], pyz: Path, tmp_pat
     assert good.returncode == 0 and json.loads(good.stdout)["route"] == entries["results"]["route"], good
     bad = run(pyz, spoiled(entries, lambda e: e["results"]["gain"].update(upper="0.0001")), tmp_path)
     assert bad.returncode == 1 and "results.gain.upper: more is claimed" in bad.stdout
+
+
+def test_what_the_one_file_checker_cannot_read(pyz: Path, tmp_path: Path) -> None:
     for data in (b"", b"{", b"\xff", b"[]", b"{}", b'{"format":"ultibound-certificate/2"}'):
         assert run(pyz, data, tmp_path).returncode == 2
 
 
+EACH = "import sys; sys.path.insert(0, sys.argv[1]); from checker.command import run; [print(run(path, None, False, False, False)) for path in sys.argv[2:]]"
+
+
 def test_spoiled_certificates_through_the_one_file_checker(pyz: Path, tmp_path: Path) -> None:
-    """Each number of one certificate moved so that it claims more, each line removed: the file says no, and why."""
-    entries = sample("split")
+    """Each number of one certificate moved so that it claims more, each line removed: the file says no, and why.
+
+    All of them in one process of its own, and some in one each."""
+    entries = sample("over")
     spoilt: list[bytes] = []
     for path, text in [*quantities(entries["results"], ("results",)), *quantities(entries["proof"], ("proof",))]:
         more = MORE[path[-1]] * (-1 if "attained" in path else 1)
         changed = copy.deepcopy(entries)
         at(changed, path[:-1])[path[-1]] = moved(text, more)
         spoilt.append(resealed(changed))
-    for gone in range(len(entries["proof"])):
-        changed = copy.deepcopy(entries)
-        del changed["proof"][gone]
-        spoilt.append(resealed(changed))
+    for gone, line in enumerate(entries["proof"]):
+        if not line["proves"].startswith("over["):  # as in test_every_line_is_needed
+            changed = copy.deepcopy(entries)
+            del changed["proof"][gone]
+            spoilt.append(resealed(changed))
     for setting in ({"kappa": "0.02"}, {"kappa": "0.1"}):
         changed = copy.deepcopy(entries)
         changed["claim"]["set"] = setting
         spoilt.append(resealed(changed))
-    assert len(spoilt) > 60
-    for data in spoilt:
-        done, verdict = run(pyz, data, tmp_path), check(data)
-        assert done.returncode == 1 and done.stdout == f"INVALID: {verdict.place}: {verdict.reason}\n", done
+    assert len(spoilt) > 150
+    said = [f"INVALID: {verdict.place}: {verdict.reason}\n" for verdict in map(check, spoilt)]
+    for data, expected in list(zip(spoilt, said, strict=True))[::40]:
+        done = run(pyz, data, tmp_path)
+        assert done.returncode == 1 and done.stdout == expected, done
+    paths = [tmp_path / f"{k}.json" for k in range(len(spoilt))]
+    for path, data in zip(paths, spoilt, strict=True):
+        path.write_bytes(data)
+    command = [sys.executable, "-I", "-S", "-c", EACH, str(pyz), *map(str, paths)]
+    together = subprocess.run(command, capture_output=True, text=True, timeout=600, cwd=tmp_path, check=True)
+    assert together.stdout == "".join(f"{line}1\n" for line in said)
 
 
 def test_the_one_file_checker_is_the_folder(pyz: Path) -> None:

@@ -413,13 +413,17 @@ def test_the_gait_over_boxes(both: bool) -> None:
             assert found[1] - found[0] <= 1.25 * (max(samples) - min(samples)) + 1e-6
 
 
-def test_a_whole_cell_is_remembered_as_it_is_evaluated() -> None:
+def test_what_is_remembered_is_as_it_was_evaluated() -> None:
     flows, _ = gait(False)
     box = [ONE, (Q(1, 10), Q(1, 5))]
     first = ends(flows, 2, 1, [0, 1], box)
     assert ends(flows, 2, 1, [0, 1], box) == first
     inner = ends(flows, 2, 1, [0, 1], [ONE, (Q(1, 10), Q(199, 1000))])
     assert first[0] <= inner[0] and inner[1] <= first[1]
+    coarse = Scaled(A.bits - 24)  # each arithmetic has units of its own
+    low, high = coarse.ends(flows.partial(2, 1, [0, 1], box, cells(flows, box), coarse))
+    assert 0 <= first[0] - low <= Q(1, coarse.one[0]) and 0 <= high - first[1] <= Q(1, coarse.one[0])
+    assert ends(flows, 2, 1, [0, 1], box) == first
 
 
 def test_outside_of_the_cuts_nothing_is_proved() -> None:

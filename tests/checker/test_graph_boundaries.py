@@ -159,7 +159,7 @@ IN_REGIONS = [
     ("settles", "proved"), ("gain <= 3/2", "proved"), ("gain < 3/2", "refuted"), (f"gain <= 3/2 - 1{STEP}", "refuted"), ('"gain <= 1/4"\nin = "right"', "proved"), ('"gain < 1/4"\nin = "right"', "refuted"), ('"gain < 3/2"\nin = "left"', "refuted"),
     ("residual <= 1/8", "proved"), ("residual < 1/8", "refuted"), ('"residual <= 1/16"\nin = "right"', "proved"), ('"residual < 1/16"\nin = "right"', "refuted"),
     ("bound <= 7/20", "proved"), ("bound < 7/20", "undecided"), ('"bound <= 3/20"\nin = "left"', "proved"), ('"bound < 3/20"\nin = "left"', "undecided"), ("bound < 1/100", "undecided"),
-    ("bound(x) <= 7/20", "proved"), ("bound(x) < 7/20", "undecided"), ('"bound(x) <= 3/20"\nin = "left"', "proved"), ('"bound(x) <= 3/20"\nin = "right"', "undecided"), ("sharp_bound(x) <= 9", "undecided"),
+    ("bound(x) <= 7/20", "proved"), ("bound(x) < 7/20", "undecided"), ('"bound(x) <= 3/20"\nin = "left"', "proved"), ('"bound(x) <= 3/20"\nin = "right"', "undecided"), ("sharp_bound(x) <= 7/20", "proved"), ("sharp_bound(x) < 7/20", "undecided"), ("sharp_bound <= 9", "undecided"),
     ("radius(x) >= 1", "proved"), ("radius(x) > 1", "undecided"), ('"radius(x) >= 13/8"\nin = "right"', "proved"), ('"radius(x) > 13/8"\nin = "right"', "undecided"), ("radius >= 1", "proved"), ("radius > 1", "undecided"),
     ("push(x) >= 17/20", "undecided"), (f"push(x) >= 17/20 - 1{STEP}", "proved"), ('"push(x) >= 51/40"\nin = "right"', "undecided"), (f'"push(x) >= 51/40 - 1{STEP}"\nin = "right"', "proved"),
     # from 1: on the left 1, 13/8, 15/32, 53/64, 69/256; on the right 1, 5/16, 19/32, 27/128: levels d with 3/2 d + 1/8 <= d' and d'/4 + 1/16 <= d
@@ -173,7 +173,7 @@ FIGURES: dict[str, tuple[str | None, str | None]] = {
     "states x bound": (None, "7/20"), "states x radius": ("1", "1"), "states x push": ("17/20", None), "routes slope gain": ("3/2", "3/2"), "routes slope residual": ("1/8", "1/8"),
     "stances left states x bound": (None, "3/20"), "stances right states x bound": (None, "7/20"), "stances left states x radius": ("1", "1"), "stances right states x radius": ("13/8", "13/8"),
     "stances left states x push": ("17/20", None), "stances right states x push": ("51/40", None), "stances left set radius": ("1", "1"), "stances right set radius": ("13/8", "13/8"), "stances right set centre x": ("0", "0"),
-    "requirements 0 value": (None, "7/20"), "states x sharp_bound": (None, None),
+    "requirements 0 value": (None, "7/20"), "states x sharp_bound": (None, "7/20"),
 }
 NEARLY = str(Q(7, 20) - Q(1, 10**40))  # the bound from below, as far as the steps are added up
 

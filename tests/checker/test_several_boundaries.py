@@ -187,7 +187,7 @@ IN_REGION = [
     ("residual <= 1/8", "proved"), ("residual < 1/8", "refuted"), (f"residual <= 1/8 - 1{STEP}", "refuted"), (f"residual < 1/8 + 1{STEP}", "proved"),
     ("bound <= 1/2", "proved"), ("bound < 1/2", "undecided"), ("bound < 1/4", "undecided"),
     ("bound(x) <= 7/20", "proved"), ("bound(x) < 7/20", "undecided"), (f"bound(x) < 7/20 + 1{STEP}", "proved"), ("bound(y) <= 1/5", "proved"), ("bound(y) < 1/5", "undecided"),
-    ("sharp_bound(x) <= 9", "undecided"), ("sharp_bound(y) < 9", "undecided"),
+    ("sharp_bound(x) <= 7/20", "proved"), ("sharp_bound(x) < 7/20", "undecided"), ("sharp_bound(y) < 1/5", "undecided"), ("sharp_bound(y) <= 1/5", "proved"),
     ("radius(x) >= 1", "proved"), ("radius(x) > 1", "undecided"), ("radius(y) >= 1", "proved"), (f"radius(y) > 1 - 1{STEP}", "proved"), ("radius(y) > 1", "undecided"),
     ("push(x) >= 13/20", "undecided"), (f"push(x) >= 13/20 - 1{STEP}", "proved"), ("push(y) > 4/5", "undecided"), (f"push(y) >= 4/5 - 1{STEP}", "proved"),
     # from ‖e‖ = 1 by e -> 3/4 e + 1/8: 7/8, 25/32, 91/128, 337/512
@@ -200,7 +200,7 @@ IN_REGION = [
 REGION_FIGURES: dict[str, tuple[str | None, str | None]] = {
     "gain": ("3/4", "3/4"), "residual": ("1/8", "1/8"), "bound": ("1/2", "1/2"), "radius": ("1", "1"), "set radius": ("1", "1"), "set centre x": ("0", "0"), "set centre y": ("0", "0"), "sharp_bound": (None, None),
     "states x bound": (None, "7/20"), "states y bound": (None, "1/5"), "states x radius": ("1", "1"), "states y radius": ("1", "1"), "states x push": ("13/20", None), "states y push": ("4/5", None),
-    "states x sharp_bound": (None, None), "states y sharp_bound": (None, None), "routes slope gain": ("3/4", "3/4"), "routes slope residual": ("1/8", "1/8"), "routes slope bound": ("1/2", "1/2"), "requirements 0 value": (None, "2/5"),
+    "states x sharp_bound": (None, "7/20"), "states y sharp_bound": (None, "1/5"), "routes slope gain": ("3/4", "3/4"), "routes slope residual": ("1/8", "1/8"), "routes slope bound": ("1/2", "1/2"), "requirements 0 value": (None, "2/5"),
 }
 
 
@@ -339,7 +339,7 @@ def without(entries: Entries, *numbers: int) -> Entries:
 
 ON_BALL = [
     ("settles", "proved"), ("gain <= 3/4", "proved"), ("gain < 3/4", "undecided"), ("gain < 1/2", "undecided"), ("residual <= 1/4", "proved"), ("residual < 1/4", "undecided"), ("residual < 1/8", "undecided"),
-    ("bound <= 1", "proved"), ("bound < 1", "undecided"), ("bound(x) <= 2/5", "proved"), ("bound(x) < 2/5", "undecided"), ("bound(y) <= 1/5", "proved"), ("bound(y) < 1/5", "undecided"), ("sharp_bound(x) < 9", "undecided"),
+    ("bound <= 1", "proved"), ("bound < 1", "undecided"), ("bound(x) <= 2/5", "proved"), ("bound(x) < 2/5", "undecided"), ("bound(y) <= 1/5", "proved"), ("bound(y) < 1/5", "undecided"), ("sharp_bound(x) < 2/5", "undecided"), ("sharp_bound(x) <= 2/5", "proved"),
     ("radius(x) >= 1", "proved"), ("radius(x) > 1", "undecided"), ("radius(y) >= 2", "proved"), ("radius(y) > 2", "undecided"), (f"radius(y) >= 2 + 1{STEP}", "undecided"),
     ("push(x) >= 1/2", "undecided"), (f"push(x) >= 1/2 - 1{STEP}", "proved"), ("push(y) >= 1", "undecided"), (f"push(y) >= 1 - 1{STEP}", "proved"),
     # e -> 3/4 e + 1/4 from 2: 7/4, 25/16; |x| <= ‖e‖/2
@@ -960,8 +960,8 @@ def over_ranges() -> None:
             reject(f"over: line {n} rests on the claim's own", own, f"proof line {n}", "uses: lines about other ranges")
 
 
-def rounding_of_stances() -> None:
-    """X and Y stand still for a second; their start is the first map."""
+def rounding_lines() -> Lines:
+    """X and Y stand still for a second; their start is the first map. Lines: 1 flow, 2 to 19 as of `region`, 20 support."""
     still = {"cuts": {}, "pieces": ["0", "1"], "degrees": [1, 0], "bits": 24, "cells": [["16777216 0 0 0 0 0 16777216 0"]]}
     assert STILL["degrees"] == still["degrees"]
     rest = STATED + f'\n[dynamics]\nduration = 1\n[dynamics.start]\nX = "{PAIR[0]}"\nY = "{PAIR[1]}"\n[dynamics.rate]\nX = "0*Y"\nY = "0*X"\n'
@@ -976,7 +976,11 @@ def rounding_of_stances() -> None:
         proof.append(new)
     proof.append({"rule": "range", "proves": "support[1]", "uses": [9], "witness": {"bits": 0, "trees": ["d"]}, "concludes": {"lower": "1", "upper": "1"}})
     d.proof = proof
-    entries = d.found("region", [("settles", "proved")], BOX)
+    return d
+
+
+def rounding_of_stances() -> None:
+    entries = rounding_lines().found("region", [("settles", "proved")], BOX)
     judged("a stance of two states", entries)
     exact("a stance of two states", entries, {"gain": ("3/4", "3/4"), "residual": ("1/8", "1/8"), "bound": ("1/2", "1/2"), "states x bound": (None, "7/20"), "states y radius": ("1", "1")})
     accept("a stance that may be short", but(entries, "proof 19 concludes lower", hair("0", 1)))

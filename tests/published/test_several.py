@@ -146,7 +146,7 @@ that = "settles"
 
 class TestPairWithTheGoldenRatio:
     """Jungers, The Joint Spectral Radius, LNCIS 385, 2009 (from memory): {[[1,1],[0,1]], [[1,0],[1,1]]} has
-    (1+√5)/2 = √ρ(A₁A₂), which the Euclidean norm attains."""
+    (1+√5)/2 = √ρ(A₁A₂), which the Euclidean norm attains: what no norm goes below."""
 
     def test_scaled_to_below_1_it_contracts(self) -> None:
         r = proved(PAIR.format(scale="1.62", kind="ellipsoid")).results
@@ -156,8 +156,21 @@ class TestPairWithTheGoldenRatio:
 
     @pytest.mark.parametrize("kind", ["auto", "box", "polytope", "ellipsoid"])
     def test_scaled_to_above_1_it_never_does(self, kind: str) -> None:
-        r = proved(PAIR.format(scale="1.61", kind=kind)).results
-        assert "proved" not in verdicts(r) and ends(r["gain"])[1] > 1 and r["set"] is None
+        """ρ(A₁A₂)^(1/2)/1.61 = 1.00499 whatever the norm, and what is shown is at most that."""
+        found = proved(PAIR.format(scale="1.61", kind=kind))
+        r, exact = found.results, Fraction("1.61803398874989484820458683437") / Fraction("1.61")
+        assert verdicts(r) == ["refuted", "undecided"] and ends(r["gain"])[1] > 1 and r["set"] is None
+        (line,) = [x for x in found.entries["proof"] if x["rule"] == "product"]
+        assert exact * (1 - Fraction(1, 1000)) <= Fraction(line["concludes"]["lower"]) <= exact
+
+    def test_between_the_two_the_constant_decides(self) -> None:
+        text = PAIR.format(scale="1.61", kind="auto")
+        for asked, verdict in (
+            ("gain < 1.0048", "refuted"),
+            ("gain <= 1.0048", "refuted"),
+            ("gain < 1.00499", "undecided"),
+        ):
+            assert verdicts(proved(text.replace("gain < 1", asked)).results)[0] == verdict, asked
 
 
 SWITCHED = """

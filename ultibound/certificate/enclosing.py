@@ -85,6 +85,9 @@ class Encloser:
                 continue
             except Undefined as why:
                 self.limits[name] = str(why)
+                if rational:  # fractions that grow too long
+                    rational = False
+                    continue
                 share /= 16
                 if found.stopped:
                     return None
@@ -105,6 +108,14 @@ class Encloser:
         low, high = concluded["lower"], concluded["upper"]
         least, most = min((t[1][1] for t in taken if t), default=high), max((t[1][0] for t in taken if t), default=low)
         return Proved(line, low, high, least, most, found.stopped)
+
+    def points(self, obligation: Obligation, on: int) -> None:
+        """The points nearest the ends of a range, without the range."""
+        name = obligation.name
+        bits = 0 if self.writer.rational(name, on) else BITS
+        found = self.search(obligation, False, self.gap)
+        taken = [self._point(name, p, bits, on) for p in (found.highest, found.lowest)]
+        self._write_points(name, [t for t in taken if t], False, bits, on)
 
     def search(
         self,

@@ -6,15 +6,17 @@ import time
 from collections.abc import Mapping, Sequence
 from contextlib import suppress
 from fractions import Fraction
+from math import exp, log
 from typing import Any
 
 from ..bounding.evaluate import to_float
 from ..checker.courses import nearest
 from ..checker.derive import Ranged
-from ..checker.jacobians import Table, inside, middle_and_half
+from ..checker.jacobians import Table, inside, middle_and_half, named
 from ..checker.matrices import Leaf, Matrix, Metric, norm_over, root
-from ..checker.numerals import decimal_up
+from ..checker.numerals import decimal_down, decimal_up
 from ..checker.periodic import Round, variables_of
+from ..checker.products import traced
 from ..checker.reals import Undefined
 from ..checker.rules import Line, place
 from ..checker.several import compared, keyed, largest, movements
@@ -85,8 +87,7 @@ class NormWriter(Writer):
     def exact(self, proves: str, on: int) -> bool:
         """Whether exact rational arithmetic can carry all entries of a matrix, and is worth it."""
         d, domain = self.derivation, self.domain(on)
-        columns = d.states if proves == "slopes" else ("",)
-        names = [f"slope[{s},{x}]" if x else f"target-miss[{s}]" for s in d.states for x in columns]
+        names = [name for row in named(d, proves) for name in row]
         below = {k for name in names for k in d.terms.below(d.meaning(name, domain).root)}
         cells = 1
         for name in names:
@@ -162,9 +163,7 @@ class NormWriter(Writer):
     def _moves(self, proves: str, on: int) -> bool:
         """Whether a matrix rests on the flow of the stance."""
         d, domain = self.derivation, self.domain(on)
-        columns = d.states if proves == "slopes" else ("",)
-        names = [f"slope[{s},{x}]" if x else f"target-miss[{s}]" for s in d.states for x in columns]
-        return any(self._flow(d.meaning(name, domain).root) for name in names)
+        return any(self._flow(d.meaning(name, domain).root) for row in named(d, proves) for name in row)
 
     def stretch(self, proves: str, point: dict[str, Fraction], direction: Sequence[float], bits: int, on: int) -> int:
         """The norm surely taken at a point; raises checker.rules.Rejected where the point is not in the set."""
@@ -179,10 +178,24 @@ class NormWriter(Writer):
         middle, half = middle_and_half(table.at(at))
         image = [sum((x * y for x, y in zip(row, vector, strict=True)), Fraction(0)) for row in middle]
         off = [sum((x * abs(y) for x, y in zip(row, vector, strict=True)), Fraction(0)) for row in half]
-        scale = before.most(vector) if proves == "slopes" else abs(vector[0])
+        scale = before.most(vector) if proves.startswith("slopes") else abs(vector[0])
         lower = (norm.least(image) - norm.length(off)) / scale
         witness = {"bits": bits, "at": at, "direction": [str(x) for x in vector]}
         return self.append("stretch", proves, self.rests(proves, on), witness, {"lower": downward(lower)})
+
+    def product(self, points: Sequence[dict[str, Fraction]], power: int, bits: int, on: int, wanted: Fraction) -> None:
+        """Jacobians whose product shows a gain of `wanted` or more in any norm: no line where it shows less."""
+        domain = self.proof.lines[on].domain
+        if domain is None:
+            raise ValueError("no set")
+        table = Table(self.derivation, "slopes", domain, bits, self._flows())
+        at = [{v.name: spelled(v, p[v.name]) for v in table.variables} for p in points]
+        lower = root_of(traced(table, at, power) / len(self.derivation.states), power * len(at))
+        if not lower >= wanted:
+            return
+        uses = [on, *([self.flow] if self.flow is not None and self._moves("slopes", on) else [])]
+        witness = {"bits": bits, "points": at, "power": power}
+        self.append("product", "slopes", uses, witness, {"lower": decimal_down(lower, DIGITS)})
 
     def periodic(self, start: Sequence[float], held: Mapping[str, Fraction], steps: Sequence[Mapping[str, Fraction]],
                  uses: list[int], bits: int) -> int:  # fmt: skip
@@ -201,10 +214,11 @@ class NormWriter(Writer):
         course = Round(d, witness, used[-1].flows)
         states = course.follow()
         ends = [max(b[1] - a[0], a[1] - b[0]) for a, b in zip(states[0], states[-1], strict=True)]
-        near = domain.length(ends) / (1 - k ** len(course.values))
+        n = d.statement.horizon
+        near = domain.length(ends) / (1 - k ** (len(course.values) // n))
         concludes = {}
         for i, s in enumerate(d.states):
-            errs = [(x[i][0] - course.centre[i][1], x[i][1] - course.centre[i][0]) for x in states[:-1]]
+            errs = [(x[i][0] - course.centre[i][1], x[i][1] - course.centre[i][0]) for x in states[:-1:n]]
             concludes[s] = downward(max(map(nearest, errs)) - domain.support(i) * near)
         return self.append("periodic", "periodic", uses, witness, concludes)
 
@@ -233,6 +247,15 @@ def spelled(v: Ranged, x: Fraction) -> str:
     if v.listed:
         return f"#{next((k for k, c in enumerate(v.cells) if c[0] <= x <= c[1]), 0)}"
     return str(min(max(x, v.inside[0]), v.inside[1]))
+
+
+def root_of(x: Fraction, degree: int) -> Fraction:
+    """A number whose power of that degree is at most x >= 0, to about fourteen digits."""
+    if not x > 0:
+        return Fraction(0)
+    guess = Fraction(f"{exp((log(x.numerator) - log(x.denominator)) / degree):.15g}")
+    tried = (guess * (1 - Fraction(share, 10**15)) for share in (0, 1, 10, 100, 1000))
+    return next((y for y in tried if y**degree <= x), Fraction(0))
 
 
 def moves_of(writer: Writer) -> list[tuple[str, str]]:

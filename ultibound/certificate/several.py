@@ -5,6 +5,7 @@ from __future__ import annotations
 from dataclasses import dataclass
 
 from ..checker.results import Outcome, Results
+from ..checker.theorems import Line
 from ..claim import Claim
 from ..claim.constants import constant
 from ..claim.model import Requirement
@@ -42,6 +43,10 @@ class SeveralRemarks:
             )
             parts += [f"{n}: {STOPS.get(x, x)}" for n in names if (x := self.limits.get(n, ""))]
             parts.append("interrupted" if self.interrupted else self.why(r))
+        lines = self.results.proof.lines
+        growing = [x for x in lines.values() if x.rule == "product" and x.variant == (number if r.over else 0)]
+        if outcome.verdict == "refuted" and r.kind == "gain" and growing:
+            parts.append(f"whatever the norm: {_grows(growing[0])}")
         return ("; ".join(p for p in parts if p)[:900] or None), pursue
 
     def why(self, r: Requirement) -> str:
@@ -62,8 +67,6 @@ class SeveralRemarks:
             return f"no set that is mapped into itself was found{size}"
         if not found.whole and r.kind not in ("radius", "steps"):
             return "only a smaller ball than the largest in the region is kept; with `shrink = true` it would count"
-        if r.kind == "sharp_bound":
-            return "the curve route, which has the sharp bound, is known for a single state only"
         if r.kind == "settles":
             return "the bound is not below the radius of the set"
         if r.kind == "steps":
@@ -77,3 +80,9 @@ class SeveralRemarks:
         low, high = constant(r.constant, self.claim.values)
         least, most = outcome.value.lower, outcome.value.upper
         return least is not None and most is not None and least <= high and low <= most and least < most
+
+
+def _grows(line: Line) -> str:
+    """What a product of Jacobians shows, in words."""
+    at = "somewhere in the region" if line.on_set else "at the target"
+    return f"Jacobians {at}, one after the other, grow on average by {float(line.concludes['lower']):.7g} a step"

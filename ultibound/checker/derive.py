@@ -5,17 +5,20 @@ from __future__ import annotations
 import re
 from dataclasses import dataclass, replace
 from fractions import Fraction
+from functools import partial
 from itertools import pairwise
 from math import prod
 from typing import Any
 
 from .calculus import Unprovable
 from .grammar import constant
+from .horizon import onward, together
 from .matrices import Metric
 from .model import Quantity, Range, Requirement, Statement
 from .motion import PHASE, Motion, copy, grown, landed, motion, supported
 from .names import Names, mentioned
 from .ranges import Ends
+from .signals import excess, followed, instant
 from .terms import Terms
 
 MOST_CELLS = 1_000_000
@@ -101,43 +104,82 @@ class Derivation:
         stance = statement.stances[0]
         if len(statement.stances) > 1 or stance.name:
             raise Unprovable("only claims of one stance can be checked")
-        if statement.horizon != 1 or statement.route == "sector":
-            raise Unprovable("only the routes slope, split and curve over one step can be checked")
+        if statement.route == "sector":
+            raise Unprovable("only the routes slope, split and curve can be checked")
         several = len(stance.states) > 1
         if several and (statement.route not in ("best", "slope") or len(stance.states) > MOST_STATES):
             raise Unprovable(f"only the route slope can be checked for two to {MOST_STATES} states")
         if not several and any(set(constant(w, statement.values)) != {Fraction(1)} for w in statement.weights.values()):
             raise Unprovable("only the weight 1 can be checked for a single state")
         self.statement, self.stance, self.terms = statement, stance, Terms()
-        self.after = statement  # whose targets a step leads to (graph.py)
+        self.onto = statement  # whose targets a step leads to (graph.py)
         self.states = tuple(stance.states)
         self.state = self.states[0]  # of a claim of one state, that one
         self.motion: Motion | None = None
         if stance.dynamics is not None:
             self.motion = motion(Names(self.terms, statement, {}, ""))
+        if statement.horizon > 1:
+            together(statement, self.motion)
         self.leaves: dict[str, Any] = {}  # of the last tree gone through, by what it proves (several.py)
         self.fixed = {s for s in self.states if not self.terms.variables(self.names().of(f"target({s})"))}
 
-    def names(self, bound: dict[str, int] | None = None, cut: str = "") -> Names:
-        return Names(self.terms, self.statement, bound or {}, cut, self.landed)
+    def names(self, bound: dict[str, int] | None = None, cut: str = "", parts: int = 0) -> Names:
+        """`parts`: into how many a stance is cut for signals that may take any course; 0: they are constants."""
+        landing = partial(self.followed, parts=parts) if parts else self.landed
+        return Names(self.terms, self.statement, bound or {}, cut, landing)
+
+    def steps(self, text: str | None) -> int:
+        """How many steps are taken together: those of the claim, or fewer, @1, @2, … on the way (horizon.md)."""
+        if text is None:
+            return self.statement.horizon
+        if text not in {f"@{j}" for j in range(1, self.statement.horizon)}:
+            raise Unprovable(f"{text}: steps on the way are counted from 1 to the horizon, and below it")
+        return int(text[1:])
+
+    def after(self, steps: int, bound: dict[str, int], s: str, cut: str = "", parts: int = 0) -> int:
+        """A state after so many steps, less what the target has moved until the last: proofs/horizon.md (1)."""
+        names = self.names(bound, cut, parts)
+        for j in range(2, steps + 1):
+            names = self.names({**bound, **onward(names, self.states, j, self.stays)})
+        root, target = names.of(f"next({s})"), f"target({s})"
+        if steps == 1 or not self.moving(s):
+            return root
+        return self.terms.put("add", (root, self.terms.put("sub", (self.names().of(target), names.of(target)))))
+
+    def stays(self, x: int, name: str) -> int:
+        """A state or held quantity on the way, clipped where libraries and flows are known for its range only."""
+        if not self.statement.libraries and self.motion is None:
+            return x
+        put, (low, high) = self.terms.put, self.range(self.quantity(name))[0]
+        return put("min", (put("max", (x, put("number", (), low))), put("number", (), high)))
+
+    def quantity(self, name: str) -> Quantity:
+        """The state or uncertain quantity that a variable is, at whatever step."""
+        return self.stance.states.get(name) or self.statement.uncertain[name.partition("@")[0]]
 
     def landed(self, names: Names, root: int, phase: int | None = None) -> int:
         return root if self.motion is None else landed(names, self.motion, root, phase)
 
+    def followed(self, names: Names, root: int, parts: int) -> int:
+        if self.motion is None:
+            return root
+        return followed(names, self.motion, root, parts, {d: self.middle(d) for d in self.motion.signals})
+
     def meaning(self, name: str, domain: Domain | None) -> Meaning:
         """The obligation of that name; the set is needed where the state runs through it."""
-        found = re.fullmatch(r"(target|image|target-miss|target-slope|slope)\[([^,]+)(?:,([^,]+))?\]", name)
-        kind, s, by = found.groups() if found else ("", self.state, None)
-        if s not in self.states:
+        found = re.fullmatch(r"(target|image|target-miss|target-slope|slope)(@[^\[]+)?\[([^,]+)(?:,([^,]+))?\]", name)
+        kind, after, s, by = found.groups() if found else ("", None, self.state, None)
+        if s not in self.states or (after is not None and kind not in ("target-miss", "slope")):
             raise Unprovable(f"{name} is no obligation of this claim")
+        steps = self.steps(after)
         if by is None and kind == "target":
             return self.over(self.names().of(f"target({s})"))
         if by is None and kind == "image":
             return self.over(self.names().of(f"next({s})"))
         if by is None and kind == "target-miss":
             targets = {x: self.names().of(f"target({x})") for x in self.states}
-            aim = Names(self.terms, self.after, {}, "").of(f"target({s})")
-            return self.over(self.terms.difference(self.names(targets).of(f"next({s})"), aim))
+            aim = Names(self.terms, self.onto, {}, "").of(f"target({s})")
+            return self.over(self.terms.difference(self.after(steps, targets, s), aim))
         if kind == "target-slope" and by in self.moving(s):
             held = {h: self.statement.uncertain[h] for h in self.moving(s)}
             given = {h: (self.occurs(q), self.surely(q)) for h, q in held.items()}
@@ -146,7 +188,7 @@ class Derivation:
             raise Unprovable(f"{name} needs a line that gives its set")
         if kind == "slope" and by in self.states:
             bound, given = self.through(domain, {})
-            return self.over(self.names(bound, by).of(f"next({s})"), by, given, True)
+            return self.over(self.after(steps, bound, s, by), by, given, True)
         if len(self.states) == 1 and (one := self.of_one(name, domain)) is not None:
             return one
         support = re.fullmatch(r"support\[([1-9][0-9]{0,3})\]", name)
@@ -165,6 +207,14 @@ class Derivation:
         s = self.state
         if name in (f"split-slope[{s},{s}]", f"split-residual[{s}]") and self.statement.correction:
             return self.split(domain, name.startswith("split-slope"))
+        courses = re.fullmatch(r"(split-)?signal-slope\[([1-9][0-9]?)\]", name)
+        if (
+            courses
+            and self.motion is not None
+            and self.motion.signals
+            and (self.statement.correction or not courses[1])
+        ):
+            return self.under_any_course(domain, int(courses[2]), courses[1] is not None)
         shell = re.fullmatch(r"shell\[([1-9][0-9]{0,3})\]", name)
         if shell and int(shell[1]) <= len(domain.radii):
             return self.shell(domain, int(shell[1]))
@@ -176,22 +226,44 @@ class Derivation:
             return self.over(grown(self.names(bound), self.motion, s, phase), "", given, True)
         return None
 
-    def split(self, domain: Domain, slope: bool) -> Meaning:
+    def under_any_course(self, domain: Domain, parts: int, split: bool) -> Meaning:
+        """proofs/signals.md: the slope of F, or of x + F − N, with a phase and a value of every signal a part."""
+        if split:
+            return self.split(domain, True, parts)
+        bound, given = self.through(domain, {})
+        root = self.names(bound, self.state, parts).of(f"next({self.state})")
+        return self.over(root, self.state, {**self.courses(parts), **given}, True)
+
+    def courses(self, parts: int) -> dict[str, tuple[Ends, Ends]]:
+        """The phases of every part of a stance, and what signals may be above the middles of their ranges there."""
+        found: dict[str, tuple[Ends, Ends]] = {}
+        for d in self.motion.signals if self.motion is not None else ():
+            low, high = self.range(self.statement.uncertain[d])[0]
+            for q in range(1, parts + 1):
+                found[instant(d, q)] = ((Fraction(q - 1, parts), Fraction(q, parts)),) * 2
+                found[excess(d, q)] = ((low - self.middle(d), high - self.middle(d)),) * 2
+        return found
+
+    def middle(self, signal: str) -> Fraction:
+        low, high = self.range(self.statement.uncertain[signal])[0]
+        return (low + high) / 2
+
+    def split(self, domain: Domain, slope: bool, parts: int = 0) -> Meaning:
         """proofs/split.md: the slope of x + F − N, or N − x + F(x*) − N(x*), N without the correction."""
         s, put = self.state, self.terms.put
         bound, given = self.through(domain, {})
         without = dict.fromkeys(self.statement.correction, put("number", (), Fraction(0)))
 
-        def part(bound: dict[str, int], name: str, cut: str = "") -> int:
-            return self.names(bound, cut).of(name)
+        def step(bound: dict[str, int], cut: str = "") -> int:
+            return self.after(self.statement.horizon, bound, s, cut, parts)
 
-        step = f"next({s})"
         if slope:
-            change = self.terms.difference(part(bound, step, s), part({**bound, **without}, step, s))
-            return self.over(put("add", (part(bound, s, s), change)), s, given, True)
-        at = {s: part({}, f"target({s})")}
-        kept = put("sub", (part({**bound, **without}, step), part(bound, s)))
-        shift = self.terms.difference(part(at, step), part({**at, **without}, step))
+            change = self.terms.difference(step(bound, s), step({**bound, **without}, s))
+            kept = self.names(bound, s).of(s)
+            return self.over(put("add", (kept, change)), s, {**self.courses(parts), **given}, True)
+        at = {s: self.names().of(f"target({s})")}
+        kept = put("sub", (step({**bound, **without}), self.names(bound).of(s)))
+        shift = self.terms.difference(step(at), step({**at, **without}))
         return self.over(put("add", (kept, shift)), "", given, True)
 
     def line(self, domain: Domain) -> Meaning:
@@ -199,8 +271,8 @@ class Derivation:
         put, s = self.terms.put, self.state
         bound, given = self.through(domain, {})
         names = self.names(bound)
-        target = names.of(f"target({s})")
-        far, error = (put("abs", (self.terms.difference(names.of(x), target),)) for x in (f"next({s})", s))
+        target, ends = names.of(f"target({s})"), (self.after(self.statement.horizon, bound, s), names.of(s))
+        far, error = (put("abs", (self.terms.difference(x, target),)) for x in ends)
         above = put("mul", (put("number", (), domain.slope), error))
         return self.over(put("sub", (far, above)), "", given, True)
 
@@ -210,7 +282,7 @@ class Derivation:
         inner, outer = domain.radii[j - 2] if j > 1 else Fraction(0), domain.radii[j - 1]
         target = self.names().of(f"target({s})")
         x = self.kept(put("add", (target, put("variable", (), error))), domain)
-        root = self.terms.difference(self.names({s: x}).of(f"next({s})"), target)
+        root = self.terms.difference(self.after(self.statement.horizon, {s: x}, s), target)
         meaning = self.over(root, "", {error: ((-outer, outer),) * 2}, True)
         cells = (-outer, -inner), (inner, outer)
         variables = [replace(v, cells=cells) if v.name == error else v for v in meaning.variables]
@@ -321,8 +393,11 @@ class Derivation:
                     return True
         return False
 
-    def loose(self) -> bool:
-        """Whether slopes by the state are those at constant signals only."""
+    def loose(self, route: str = "slope") -> bool:
+        """Whether slopes by the state, of what a route takes them of, are those at constant signals only."""
+        if route == "split":
+            whole = Domain(False, Fraction(0), (Fraction(0), Fraction(0)))
+            return self.stirred(self.split(whole, True).root, self.state)
         pairs = [(s, x) for s in self.states for x in self.states]
         return any(self.stirred(self.names(cut=x).of(f"next({s})"), x) for s, x in pairs)
 
@@ -357,12 +432,15 @@ class Derivation:
             if name in given:
                 outer, inner = given[name]
             else:
-                quantity = self.stance.states.get(name) or self.statement.uncertain[name]
+                quantity = self.quantity(name)
                 if quantity.values is not None:
                     cells = tuple(constant(e, self.statement.values) for e in quantity.values)
                     variables.append(Ranged(name, cells, cells[0], True))
                     continue
                 outer, inner = self.range(quantity)
+                if "@" in name and quantity.held:  # what it moves by; a point may stay
+                    most = self.change(quantity.name)[1]
+                    outer, inner = (-most, most), (Fraction(0), Fraction(0))
             cuts = [outer[0], *sorted(x for x in self.lines(name, root) if outer[0] < x < outer[1]), outer[1]]
             variables.append(Ranged(name, tuple(pairwise(cuts)), inner, False))
         if prod(len(v.cells) for v in variables) > MOST_CELLS:

@@ -4,11 +4,13 @@ from __future__ import annotations
 
 import hashlib
 import json
+import re
 from typing import Any
 
 FORMAT = "ultibound-certificate/1"
 LARGEST = 64 * 2**20
 DEEPEST = 64
+SURROGATE = re.compile("[\ud800-\udfff]")
 KEYS = {"format", "claim", "results", "proof", "assumptions", "made_with", "digest"}
 
 
@@ -81,7 +83,7 @@ def shallow(found: Any) -> None:
             waiting += [(x, depth + 1) for pair in value.items() for x in pair]
         elif isinstance(value, list):
             waiting += [(x, depth + 1) for x in value]
-        elif isinstance(value, str) and any("\ud800" <= c <= "\udfff" for c in value):
+        elif isinstance(value, str) and SURROGATE.search(value):
             raise Unreadable("a lone surrogate in a text")
 
 

@@ -13,7 +13,7 @@ from fractions import Fraction
 from functools import lru_cache
 from itertools import pairwise, product
 from math import comb, prod
-from operator import add
+from operator import add, mul
 from typing import Any
 
 from .model import Library
@@ -30,6 +30,7 @@ DEGREES, BITS = (60, 12), (24, 400)
 MOST_NUMBERS = 200_000  # in one text
 LONGEST = 4096  # binary digits of a cut
 POINT = 40  # an argument known to so many bits is a point
+MOST_KEPT = 20_000  # enclosures of entries, for other lines
 COARSE = 40  # bits after the point of the growth of an error
 STEEPEST = 64  # rates times half the duration of a piece
 INTEGER = r"(?:0|-?[1-9][0-9]{0,199})"
@@ -160,7 +161,7 @@ class Flows:
         self._last: tuple[Any, list[Place]] = (None, [])
         self.bits = system.bits + 4  # after the point of middles and reaches
         self._known: dict[Any, tuple[Stored, int, Fraction]] = {}
-        self._whole: dict[Any, tuple[int, int, int]] = {}
+        self._found: dict[Any, Interval] = {}
 
     def reached(self, at: Sequence[Ends], cells: Sequence[range]) -> list[range]:
         """Cells of grids; of a face at the last cut, the one it bounds: derivatives along it are those of either."""
@@ -237,20 +238,19 @@ class Flows:
         cell, rank, at = place
         end = len(at) < len(orders)
         key = cell, rank, i, j, orders, end
+        if (key, at, a.bits) in self._found:  # lines about the same boxes
+            return self._found[key, at, a.bits]
         if key not in self._known:
             self._known[key] = self._polynomial(cell, rank, (i, j), orders, end)
         poly, error, factor = self._known[key]
-        whole = all(x == (0, 1 << self.bits) for x in at)
-        if whole and key in self._whole:
-            middle, reach, extra = self._whole[key]
-        else:
-            middle, reach, extra = spread(poly, at, self.bits)
-        if whole:
-            self._whole[key] = middle, reach, extra
+        middle, reach, extra = spread(poly, at, self.bits)
         reach += error << extra
         below = factor.denominator << self.system.models.bits + extra
         low, high = ((middle + s * reach) * factor.numerator for s in (-1, 1))
-        return a.between(Fraction(low, below), Fraction(high, below))
+        if len(self._found) == MOST_KEPT:
+            self._found.clear()
+        found = self._found[key, at, a.bits] = a.between(Fraction(low, below), Fraction(high, below))
+        return found
 
     def _polynomial(
         self, cell: int, rank: int, entry: Pair, orders: tuple[int, ...], end: bool
@@ -305,51 +305,51 @@ def chebyshev(k: int) -> list[int]:
 
 
 @lru_cache(512)
-def moves(
-    powers_: tuple[Exponents, ...], v: int, point: bool
-) -> tuple[int, tuple[Exponents, ...], list[tuple[int, int, int, int]]]:
-    """Of x + y (of a point: x) for argument v: its degree, powers that arise, and (from, to, exponent, binomial)."""
-    ranks: dict[Exponents, int] = {}
-    found = []
+def alike(powers_: tuple[Exponents, ...], v: int, point: bool) -> tuple[int, tuple[Exponents, ...], list[list[int]]]:
+    """The degree by argument v, the powers that shifting it leaves, and the ranks of terms alike but in its power.
+
+    These are in the order of that power, -1 where there is none; of a point only the power 0 is left."""
+    groups: dict[Exponents, dict[int, int]] = {}
     for k, e in enumerate(powers_):
-        for n in range(e[v] if point else 0, e[v] + 1):
-            to = ranks.setdefault((*e[:v], e[v] - n, *e[v + 1 :]), len(ranks))
-            found.append((k, to, n, comb(e[v], n)))
-    return max((e[v] for e in powers_), default=0), tuple(ranks), found
+        groups.setdefault((*e[:v], 0, *e[v + 1 :]), {})[e[v]] = k
+    found = [[ranks.get(n, -1) for n in range(max(ranks) + 1)] for ranks in groups.values()]
+    left = [(*e[:v], n, *e[v + 1 :]) for e, x in zip(groups, found, strict=True) for n in range(1 if point else len(x))]
+    return max(map(len, found), default=1) - 1, tuple(left), found
+
+
+def shifted_to(poly: Stored, v: int, x: int, bits: int, point: bool) -> tuple[Stored, int]:
+    """In powers of the distance from x by argument v (of a point: there), and how many more bits it has."""
+    degree, powers_, groups = alike(poly[0], v, point)
+    zeros = min((x & -x).bit_length() - 1, bits) if x else bits  # halved boxes have middles of few digits
+    x, places = x >> zeros, bits - zeros
+    steps = [x**n << places * (degree - n) for n in range(degree + 1)]
+    rows = [[comb(n, m) * steps[n - m] for n in range(m, degree + 1)] for m in range(1 if point else degree + 1)]
+    column = [*poly[1], 0]  # the last: no term
+    moved = []
+    for ranks in groups:
+        here = [column[k] for k in ranks]
+        moved += [sum(map(mul, row, here[m:])) for m, row in enumerate(rows[: len(here)])]
+    return (powers_, moved), places * degree
 
 
 def spread(poly: Stored, at: tuple[Pair, ...], bits: int) -> tuple[int, int, int]:
     """The value in the middle, the magnitudes of all that may differ from it, and how many more bits these have."""
-    exponents, column = poly
     extra = rounded = 0
     for v in sorted(range(len(at)), key=lambda v: at[v][1]):  # points first, as they leave fewer powers
         x, r = at[v]
         point = r << POINT <= 1 << bits
         if point and r:  # all arguments are within [-1, 1]
-            steep = sum([abs(c) * e[v] for e, c in zip(exponents, column, strict=True) if e[v]])
+            steep = sum([abs(c) * e[v] for e, c in zip(*poly, strict=True) if e[v]])
             rounded -= -steep * r >> bits + extra
         if x or point:
-            zeros = min((x & -x).bit_length() - 1, bits) if x else bits  # halved boxes have middles of few digits
-            x, places = x >> zeros, bits - zeros
-            degree, exponents, found = moves(exponents, v, point)
-            extra += places * degree
-            steps = [x**n << places * (degree - n) for n in range(degree + 1)]
-            moved = [0] * len(exponents)
-            for k, to, n, times in found:
-                moved[to] += column[k] * times * steps[n]
-            column = moved
-    middle, reach = 0, rounded << extra
-    for e, c in zip(exponents, column, strict=True):
-        size, degree = abs(c), 0
-        for (_, r), n in zip(at, e, strict=True):
-            if n:
-                size *= r**n
-                degree += n
-        if degree:
-            reach -= -size >> bits * degree
-        else:
-            middle = c
-    return middle, reach, extra
+            poly, more = shifted_to(poly, v, x, bits, point)
+            extra += more
+    middle = sum([c for e, c in zip(*poly, strict=True) if not any(e)])
+    sizes, places = (poly[0], [abs(c) if any(e) else 0 for e, c in zip(*poly, strict=True)]), 0
+    for v, (_, r) in enumerate(at):
+        sizes, more = shifted_to(sizes, v, r, bits, True)
+        places += more
+    return middle, (rounded << extra) - (-sum(sizes[1]) >> places), extra
 
 
 # The rule.

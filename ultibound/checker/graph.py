@@ -57,7 +57,7 @@ def of_stance(statement: Statement, name: str) -> Statement:
 def toward(d: Derivation, after: Derivation) -> Derivation:
     """A stance whose steps lead to the target of the stance that follows."""
     found = copy(d)
-    found.after, found.leaves = after.statement, {}
+    found.onto, found.leaves = after.statement, {}
     return found
 
 

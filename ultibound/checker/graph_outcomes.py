@@ -31,6 +31,7 @@ class StanceResults(SeveralResults):
         self.domain = balls[0].domain if kept is None else kept[name]
         if self.domain.metric != self.metric:
             raise Rejected(f"{name}: the ball and the invariant set are of different metrics")
+        self.way = self.domain  # one step at a time
         self.lasting = self.derivation.motion is None or self.above(1)
         self.unsupported = 0 if self.lasting else 1
         self.lasts = self.supported()
@@ -60,6 +61,10 @@ class StanceResults(SeveralResults):
         self.kind, self.whole, self.settled, self.partial = kind, whole, settled, partial
         self.edges = {s: self.reached(s) for s in self.states if kind == "region"}
         self.radii = {s: self.radius_along(s) for s in self.states}
+
+    def in_norm(self) -> Fraction | None:
+        """The bound in the norm of the stance."""
+        return None if self.bound is None else self.bound.upper
 
     def bounded(self, bound: Span | None, by_state: dict[str, Fraction]) -> None:
         """What is proved of the long run in this stance."""
@@ -115,7 +120,7 @@ class GraphResults(Results):
         self.partial = not self.settled and (small or invariant is not None)
         for x in self.each.values():
             x.placed(self.kind, self.whole, self.settled, self.partial)
-        self.steps = {} if self.partial else self.of_steps()
+        self.onward = {} if self.partial else self.of_steps()
         bounds = self.bounds()
         compared_by_state = self.comparisons()
         for name, x in self.each.items():
@@ -123,10 +128,10 @@ class GraphResults(Results):
         self.radius = least([x.radius for x in self.each.values()])
         route = self.largest(list(self.each))
         self.gain, self.residual, self.bound = route.gain, route.residual, route.bound
-        self.routes = {"slope": route} if self.steps else {}
+        self.routes = {"slope": route} if self.onward else {}
         self.reported, self.sharp, self.best, self.push = "slope", None, None, None
         self.requirements = [self.required(n, r) for n, r in enumerate(self.statement.requirements, 1)]
-        self.needed |= {n for x in (*self.each.values(), *self.steps.values()) for n in x.needed}
+        self.needed |= {n for x in (*self.each.values(), *self.onward.values()) for n in x.needed}
 
     def stances(self) -> dict[str, Results]:
         return dict(self.each)
@@ -154,10 +159,10 @@ class GraphResults(Results):
     def bounds(self) -> dict[str, Span]:
         """proofs/graph.md (4): the bound in the norm of each stance; from below what the steps surely add up to."""
         line = self.one("graph-bound", "bound[slope]")
-        if line is None or not self.settled or not self.steps:
+        if line is None or not self.settled or not self.onward:
             return {}
         least = dict.fromkeys(self.each, Fraction(0))
-        pairs = {step: (x.gain.lower, x.residual.lower) for step, x in self.steps.items()}
+        pairs = {step: (x.gain.lower, x.residual.lower) for step, x in self.onward.items()}
         known = all(k is not None and e is not None for k, e in pairs.values())
         for _ in range(ROUNDS if known else 0):
             before = dict(least)
@@ -184,7 +189,7 @@ class GraphResults(Results):
 
     def largest(self, names: list[str]) -> Route:
         """Gain and residual of the steps that leave these stances, and the bounds in them: the largest."""
-        steps = [x for (s, _), x in self.steps.items() if s in names]
+        steps = [x for (s, _), x in self.onward.items() if s in names]
         bounds = [self.each[s].bound for s in names]
         gain, residual = most([x.gain for x in steps]), most([x.residual for x in steps])
         known = [x for x in bounds if x is not None]
@@ -212,20 +217,18 @@ class GraphResults(Results):
             return verdict(span is not None and less(c[1], span.lower), False, span)
         if r.kind == "steps":
             return self.counted(several, r, c)
-        if r.kind == "sharp_bound":
-            return Outcome("undecided", None)
-        if r.state is not None:
+        if r.state is not None:  # by the best argument, for either name
             spans = [x.long_run(r.state) for x in several]
             span = most([x for x in spans if x is not None]) if None not in spans else None
             return verdict(
                 self.whole and span is not None and compared(r.relation, Span(None, span.upper), c), False, span
             )
-        return self.in_norm(several, r, c)
+        return self.in_norms(several, r, c)
 
-    def in_norm(self, several: list[StanceResults], r: Any, c: tuple[Fraction, Fraction]) -> Outcome:
+    def in_norms(self, several: list[StanceResults], r: Any, c: tuple[Fraction, Fraction]) -> Outcome:
         """Gain, residual and bound: several.md (4), (5e), in the norms of the stances."""
         route = self.largest([x.part for x in several])
-        found = {"bound": route.bound, "gain": route.gain, "residual": route.residual}[r.kind]
+        found = {"bound": route.bound, "gain": route.gain, "residual": route.residual}.get(r.kind)
         upper = Span(None, None if found is None else found.upper)
         means = r.kind == "gain" or all(x.meant() for x in self.each.values())
         proved = self.whole and compared(r.relation, upper, c) and means
@@ -291,14 +294,14 @@ class GraphResults(Results):
 
     def pairs(self) -> dict[tuple[str, str], tuple[Fraction, Fraction]]:
         """Gain and residual of every step, proved."""
-        return {step: x.shown for step, x in self.steps.items() if x.shown is not None}
+        return {step: x.shown for step, x in self.onward.items() if x.shown is not None}
 
     def by_state(self) -> dict[str, dict[str, Span | None]]:
         found: dict[str, dict[str, Span | None]] = {}
         figures = [x.by_state() for x in self.each.values()]
         for s in self.states:
-            found[s] = {"sharp_bound": None}
-            for name, worst in (("bound", most), ("radius", least), ("push", least)):
+            found[s] = {}
+            for name, worst in (("bound", most), ("sharp_bound", most), ("radius", least), ("push", least)):
                 spans = [x for each in figures if (x := each[s][name]) is not None]
                 found[s][name] = worst(spans) if len(spans) == len(figures) else None
         return found

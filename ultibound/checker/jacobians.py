@@ -26,11 +26,8 @@ class Table:
     """The entries of ∂F/∂x over a set (`slopes`), or of F(x*, w) − x* (`misses`), in the variables of all of them."""
 
     def __init__(self, d: Derivation, proves: str, domain: Domain, bits: Any, flows: Flows | None) -> None:
-        if proves not in TABLES:
-            raise Rejected(f"a matrix proves {' or '.join(TABLES)}")
         self.d, self.domain, self.a = d, domain, arithmetic(bits)
-        columns = d.states if proves == "slopes" else ("",)
-        names = [[f"slope[{s},{x}]" if x else f"target-miss[{s}]" for x in columns] for s in d.states]
+        names = named(d, proves)
         meanings = [[d.meaning(name, domain) for name in row] for row in names]
         self.variables = together([m for row in meanings for m in row])
         if prod(len(v.cells) for v in self.variables) > MOST_CELLS:
@@ -109,6 +106,15 @@ class Table:
         box = [valued(v, at[v.name]) for v in self.variables]
         inside(self.d, self.domain, dict(zip((v.name for v in self.variables), box, strict=True)))
         return box
+
+
+def named(d: Derivation, proves: str) -> list[list[str]]:
+    """The entries of a matrix, row by row."""
+    kind, at, steps = proves.partition("@")
+    if kind not in TABLES:
+        raise Rejected(f"a matrix proves {' or '.join(TABLES)}, or these after fewer steps")
+    columns = d.states if kind == "slopes" else ("",)
+    return [[f"slope{at}{steps}[{s},{x}]" if x else f"target-miss{at}{steps}[{s}]" for x in columns] for s in d.states]
 
 
 def inside(d: Derivation, domain: Domain | None, at: Mapping[str, Ends]) -> None:

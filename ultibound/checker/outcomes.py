@@ -7,7 +7,7 @@ from typing import Any
 
 from .grammar import constant
 from .matrices import Metric, dot
-from .results import NOTHING, Outcome, Results, Route, Span, compared, less, opposed, verdict
+from .results import NOTHING, Outcome, Results, Route, Span, compared, greater, less, opposed, verdict
 from .rules import Proof, Rejected
 
 
@@ -29,22 +29,23 @@ class SeveralResults(Results):
         self.metric: Metric = balls[0].domain.metric
         if self.domain is None or self.domain.metric != self.metric:
             raise Rejected("the ball and the invariant set are of different metrics")
-        self.lasting = self.derivation.motion is None or self.above(1)  # else points are of no stance
-        self.unsupported = 0 if self.lasting else 1
-        self.settled = invariant is not None and self.supported()
+        self.way = self.on_the_way()
+        self.supported_from(invariant)
         self.partial = not self.settled and (ball.rule == "smaller-ball" or invariant is not None or not self.lasting)
         self.centres = {s: Span(*x) for s, x in zip(self.states, balls[0].domain.targets, strict=True)}
         self.radius = Span(ball.concludes["radius"], ball.concludes.get("outer"))
         self.edge, self.orbit, self.room, self.missed = self.radius.upper, None, None, None
         self.kind, self.whole = self.set_found(invariant if self.settled else None, ball)
         self.edges = {s: self.reached(s) for s in self.states if self.kind == "region"}
+        self.growth, self.everywhere = self.grown()
         self.routes = {} if self.partial or self.one("slope", "slope") is None else {"slope": self.of_slope()}
         self.reported = "slope"
-        route = self.routes.get("slope", Route())
-        self.gain, self.residual, self.bound = self.slopes(route.gain), route.residual, route.bound
         self.best = self.sharp = None
         self.orbits = {s: self.farthest(s) for s in self.states}
         self.bounds = self.bounds_by_state()
+        self.lift(self.within())
+        route = self.routes.get("slope", Route())
+        self.gain, self.residual, self.bound = self.slopes("slope"), route.residual, route.bound
         self.push = None
         self.pushes = {s: self.pushed_along(s) for s in self.states}
         self.radii = {s: self.radius_along(s) for s in self.states}
@@ -80,7 +81,7 @@ class SeveralResults(Results):
         line = self.one("slope", "slope")
         if line is None or line.domain != self.domain:
             raise Rejected("gain and residual of slope refer to another set")
-        k, least = self.stretched("slopes"), self.stretched("misses")
+        k, least = greater(self.stretched("slopes"), self.growth), self.stretched("misses")
         gain, residual = Span(k, line.concludes["gain"]), Span(least, line.concludes["residual"])
         bounded = self.one("ultimate-bound", "bound[slope]")
         if bounded is None:
@@ -97,6 +98,16 @@ class SeveralResults(Results):
         self.needed.add(max(found)[1])
         return max(max(found)[0], Fraction(0))
 
+    def grown(self) -> tuple[Fraction | None, bool]:
+        """proofs/several.md (7): the gain that a product of Jacobians shows in any norm, and whether in any set too."""
+        lines = [x for x in self.lines("product", "slopes") if self.lasting and x[1].domain == self.domain]
+        found = [(x.concludes["lower"], not x.on_set or self.kind == "region", n) for n, x in lines]
+        if not found:
+            return None, False
+        lower, everywhere, number = max(found)
+        self.needed.add(number)
+        return lower, everywhere
+
     def bounds_by_state(self) -> dict[str, Fraction]:
         """proofs/several.md (2), (3): the least bound of each state, by the norm and by comparison."""
         lines = self.lines("componentwise", "componentwise")
@@ -107,12 +118,22 @@ class SeveralResults(Results):
         found: dict[str, Fraction] = {}
         for i, s in enumerate(self.states):
             each = [(line.concludes[s], n) for n, line in lines]
-            if self.bound is not None and self.bound.upper is not None:
-                each.append((self.bound.upper * self.metric.support(i), 0))
+            if (bound := self.in_norm()) is not None:
+                each.append((bound * self.metric.support(i), 0))
             if each:
                 found[s], number = min(each)
                 self.needed.update([number] if number else [])
         return found
+
+    def in_norm(self) -> Fraction | None:
+        """The bound of the route itself."""
+        bound = self.routes.get("slope", Route()).bound
+        return None if bound is None else bound.upper
+
+    def lift(self, least: Fraction | None) -> None:
+        super().lift(least)
+        if self.settled and least is not None and not self.phased(least):
+            self.bounds = {s: self.metric.support(i) * self.lifted(least) for i, s in enumerate(self.states)}
 
     def farthest(self, s: str) -> Fraction | None:
         """How far a periodic orbit surely takes a state, again and again: proofs/several.md (6)."""
@@ -125,7 +146,7 @@ class SeveralResults(Results):
 
     def within(self) -> Fraction | None:
         """The least bound in the metric's norm."""
-        each = [] if self.bound is None or self.bound.upper is None else [self.bound.upper]
+        each = [] if (bound := self.in_norm()) is None else [bound]
         if len(self.bounds) == len(self.states):
             each.append(self.metric.length([self.bounds[s] for s in self.states]))
         return min(each, default=None)
@@ -176,7 +197,7 @@ class SeveralResults(Results):
         if r.kind == "steps":
             return self.stepped_along(r, c)
         if r.kind in ("bound", "sharp_bound") and r.state is not None:
-            span = None if r.kind == "sharp_bound" else self.long_run(r.state)
+            span = self.long_run(r.state)  # by the best argument, for either name
             proved = self.whole and span is not None and compared(r.relation, Span(None, span.upper), c)
             taken = Span(None, None if span is None else span.lower)
             return verdict(proved, not self.any and opposed(r.relation, taken, c), span)
@@ -185,10 +206,13 @@ class SeveralResults(Results):
         # a length says nothing in a norm that may be as small as one likes; a gain is the same in any unit
         proved = self.whole and compared(r.relation, upper, c) and (r.kind == "gain" or self.meant())
         # in a metric the claim fixes, what is surely taken settles it; in another norm it might be less
-        final = self.stated() and not self.any and r.kind != "bound" and found is not None
-        # nor is another route's gain, told apart from a correction, known from here
-        final &= r.kind != "gain" or self.statement.route == "slope" or not self.statement.correction
-        return verdict(proved, final and opposed(r.relation, Span(None, found.lower if found else None), c), found)
+        least = found.lower if found is not None and self.stated() and r.kind != "bound" else None
+        if r.kind == "gain" and found is not None:
+            if self.everywhere:
+                least, found = greater(least, self.growth), Span(greater(found.lower, self.growth), found.upper)
+            # nor is another route's gain, told apart from a correction, known from here
+            least = least if self.statement.route == "slope" or not self.statement.correction else None
+        return verdict(proved, not self.any and opposed(r.relation, Span(None, least), c), found)
 
     def long_run(self, s: str) -> Span | None:
         """How far a state can be in the long run: taken by an orbit, and proved."""
@@ -227,7 +251,7 @@ class SeveralResults(Results):
         most: int | None = None
         if self.settled and limit is not None and less(start[1], limit.lower, equal=True):
             wide = self.metric.support(i)
-            most = self.count("slope", start[1] * self.metric.unit(i)[1], end[0] / wide)
+            most = self.steps("slope", start[1] * self.metric.unit(i)[1], end[0] / wide)
         span = None if most is None else Span(None, Fraction(most))
         proved = most is not None and compared(r.relation, Span(None, Fraction(most)), c)
         return verdict(proved, False, span)
@@ -235,7 +259,8 @@ class SeveralResults(Results):
     def by_state(self) -> dict[str, dict[str, Span | None]]:
         found: dict[str, dict[str, Span | None]] = {}
         for s in self.states:
-            found[s] = {"bound": self.long_run(s), "sharp_bound": None, "radius": self.radii[s], "push": self.pushes[s]}
+            far = self.long_run(s)
+            found[s] = {"bound": far, "sharp_bound": far, "radius": self.radii[s], "push": self.pushes[s]}
         return found
 
     def targets(self) -> dict[str, Span]:

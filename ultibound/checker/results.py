@@ -2,11 +2,11 @@
 
 from __future__ import annotations
 
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from fractions import Fraction
 from typing import Any
 
-from .derive import RANGED
+from .derive import RANGED, Domain
 from .grammar import constant
 from .rules import Line, Proof, Rejected
 from .theorems import PAIRS, levels, magnitude, movement
@@ -59,9 +59,8 @@ class Results:
         (ball,) = balls
         invariant = self.one("invariant-region", "invariant") or self.one("invariant-ball", "invariant")
         self.domain = invariant.domain if invariant is not None else ball.domain
-        self.lasting = self.derivation.motion is None or self.above(1)  # else points are of no stance
-        self.unsupported = 0 if self.lasting else 1
-        self.settled = invariant is not None and self.supported()
+        self.way = self.on_the_way()
+        self.supported_from(invariant)
         # a smaller ball that is not mapped into itself, or a stance that is not shown to last, is no set to speak of
         self.partial = not self.settled and (ball.rule == "smaller-ball" or invariant is not None or not self.lasting)
         centre = proof.lines[ball.uses[0]].concludes
@@ -77,10 +76,11 @@ class Results:
         proved = () if self.partial else PAIRS
         self.routes = {name: self.route(name) for name in proved if self.one(name, name) is not None}
         self.reported = self.chosen()
+        self.best = self.sharp = self.least_bound()
+        self.lift(None if self.best is None else self.best.upper)
         route = self.routes.get(self.reported, Route())
         self.residual, self.bound = route.residual, route.bound
-        self.gain = self.slopes(self.contraction() if self.reported == "curve" else route.gain)
-        self.best = self.sharp = self.least_bound()
+        self.gain = self.contraction() if self.reported == "curve" else self.slopes(self.reported)
         self.push = self.pushed()
         numbered = enumerate(self.statement.requirements, 1)
         self.requirements = [self.required(n, r) for n, r in numbered if not variant or n == variant]
@@ -116,6 +116,52 @@ class Results:
             return "ball", True
         return "smaller ball", self.statement.shrink and wide
 
+    def supported_from(self, invariant: Line | None) -> None:
+        """Whether points are of the claim's own stances and steps, and whether the set is settled."""
+        moves = self.derivation.motion is not None
+        self.unsupported = 1 if moves and not self.above(1) else 0
+        self.lasting = self.way is not None and not self.unsupported
+        self.settled = invariant is not None and self.way is not None and self.supported()
+
+    def on_the_way(self) -> Domain | None:
+        """Where states may be at every step from the set, also within a horizon: proofs/horizon.md (2)."""
+        if self.statement.horizon == 1 or self.domain is None or not self.domain.ball:
+            return self.domain
+        line = self.one("course", "course")
+        return None if line is None else line.domain
+
+    def led(self, error: Fraction) -> list[Fraction] | None:
+        """How far from the target each step within a horizon may lead; None where that is not known."""
+        found, once = [error], self.one("slope", "slope@1")
+        for j in range(1, self.statement.horizon):
+            line, start = self.one("slope", f"slope@{j}"), error
+            if line is None and self.way == self.domain:  # the step before ends in the set, and this one starts there
+                line, start = once, found[-1]
+            if line is None or line.domain != self.domain:
+                return None
+            found.append(line.concludes["gain"] * start + line.concludes["residual"])
+        return found
+
+    def lifted(self, error: Fraction) -> Fraction:
+        """The largest error at any step, of one at the end of every horizon."""
+        return max(self.led(error) or [error])
+
+    def phased(self, bound: Fraction | None) -> bool:
+        """Whether in the end every step starts in the set: proofs/horizon.md (3)."""
+        if self.way == self.domain or bound is None:
+            return True
+        return all(less(x, self.radius.lower) for x in self.led(bound) or [])
+
+    def lift(self, least: Fraction | None) -> None:
+        """Bounds of all steps, where in the end not every step starts in the set."""
+        if self.phased(least):
+            return
+        for name, r in self.routes.items():
+            if r.bound is not None and r.bound.upper is not None:
+                self.routes[name] = replace(r, bound=Span(r.bound.lower, self.lifted(r.bound.upper)))
+        if self.best is not None and self.best.upper is not None:
+            self.best = self.sharp = Span(self.best.lower, self.lifted(self.best.upper))
+
     def supported(self) -> bool:
         """Whether what has to stay positive throughout a stance does: proofs/stance.md (4)."""
         motion = self.derivation.motion
@@ -128,7 +174,7 @@ class Results:
     def above(self, k: int) -> bool:
         """Whether the k-th quantity that has to stay positive does."""
         line = self.one("range", f"support[{k}]")
-        return line is not None and line.domain == self.domain and line.concludes["lower"] > 0
+        return line is not None and line.domain == self.way and line.concludes["lower"] > 0
 
     def escapes(self) -> bool:
         """Whether a point leaves the region: else no ball is the set (proofs/invariant-set.md (4))."""
@@ -176,15 +222,26 @@ class Results:
 
     def contraction(self) -> Span:
         """The best gain of the routes that have one: a curve's slope is no contraction."""
-        found = [r.gain for n, r in self.routes.items() if n != "curve"]
+        found = [self.slopes(n) for n in self.routes if n != "curve"]
         lowers = [g.lower for g in found if g.lower is not None]
         uppers = [g.upper for g in found if g.upper is not None]
         every = len(lowers) == len(found) and (not self.statement.correction or "split" in self.routes)
         return Span(min(lowers, default=None) if every else None, min(uppers, default=None))
 
-    def slopes(self, gain: Span) -> Span:
-        """A gain without its upper end where k is no bound of slopes: proofs/stance.md (5)."""
-        return Span(gain.lower, None) if self.derivation.loose() else gain
+    def slopes(self, name: str) -> Span:
+        """The gain of a route; where its k is that at constant signals, under any course: proofs/signals.md (4)."""
+        if name not in self.routes:
+            return NOTHING
+        gain = self.routes[name].gain
+        if name == "curve" or not self.derivation.loose(name):
+            return gain
+        proves = "split-signal-slope[" if name == "split" else "signal-slope["
+        lines = [(n, x) for n, x in self.proof.lines.items() if (x.variant, x.rule) == (self.variant, "range")]
+        found = [(magnitude(x), n) for n, x in lines if x.proves.startswith(proves) and x.domain == self.domain]
+        if not found:
+            return Span(gain.lower, None)
+        self.needed.add(min(found)[1])
+        return Span(gain.lower, min(found)[0])
 
     def least_bound(self) -> Span | None:
         """How far the state can be in the long run, by the best argument on the set."""
@@ -292,7 +349,7 @@ class Results:
     def gained(self, r: Any, c: tuple[Fraction, Fraction]) -> Outcome:
         """Refuted only where no route is left that might have a smaller gain: proofs/attained.md (3)."""
         asked = self.statement.route
-        span = self.slopes(self.routes.get(asked, Route()).gain if asked in ("slope", "split") else self.contraction())
+        span = self.slopes(asked) if asked in ("slope", "split") else self.contraction()
         final = not self.any and (asked in ("slope", "split") or not self.statement.correction)
         proved = self.whole and compared(r.relation, Span(None, span.upper), c)
         return verdict(proved, final and opposed(r.relation, Span(None, span.lower), c), span)
@@ -320,8 +377,7 @@ class Results:
         start, end = (constant(e, self.statement.values) for e in (r.start, r.end))
         most: int | None = None
         if self.settled and less(start[1], self.radius.lower, equal=True):
-            counts = [n for name in self.routes if (n := self.count(name, start[1], end[0])) is not None]
-            most = min(counts, default=None)
+            most = min((n for x in self.routes if (n := self.steps(x, start[1], end[0])) is not None), default=None)
         least: Fraction | None = None
         paths = [(x.concludes["steps"] + 1, n) for n, x in self.lines("path", "path")
                  if self.lasting and x.concludes["from"] <= start[0] and x.concludes["distance"] > end[1]]  # fmt: skip
@@ -331,6 +387,18 @@ class Results:
         span = Span(least, None if most is None else Fraction(most))
         proved = most is not None and compared(r.relation, Span(None, Fraction(most)), c)
         return verdict(proved, opposed(r.relation, Span(None, least), c), None if span == NOTHING else span)
+
+    def steps(self, name: str, error: Fraction, wanted: Fraction) -> int | None:
+        """Steps by one route, horizon by horizon: proofs/horizon.md (4)."""
+        n = self.statement.horizon
+        if n == 1:
+            return self.count(name, error, wanted)
+        if self.led(error) is None:
+            return None
+        far = self.lifted(error)
+        kept = self.kind == "region" or less(far, self.radius.lower, equal=True)
+        rounds = self.count(name, far, wanted) if kept else None
+        return None if rounds is None else rounds * n
 
     def count(self, name: str, error: Fraction, wanted: Fraction) -> int | None:
         """Steps by one route: the error is led from level to level, rounded up each time."""
@@ -370,7 +438,7 @@ class Results:
             line = None
         if self.partial and not (self.domain is not None and self.domain.ball):
             taken = NOTHING  # the region may hold more than the ball that the requirement is about
-        if line is not None and line.domain != self.domain:
+        if line is not None and line.domain != (self.way or self.domain):
             raise Rejected(f"require[{number}]: over another set than the gain")
         value = Span(line.concludes["lower"], line.concludes["upper"]) if line is not None else None
         proved = line is not None and (self.whole or not line.on_set)

@@ -31,6 +31,7 @@ SHAPES: dict[str, tuple[tuple[str, ...], tuple[str, ...] | None]] = {
     "smaller-ball": ((), ("radius",)),
     "invariant-region": ((), ()),
     "invariant-ball": ((), ()),
+    "course": ((), ()),
     "slope": ((), ("gain", "residual")),
     "split": ((), ("gain", "residual")),
     "shells": (("radii", "slope"), ()),
@@ -51,6 +52,7 @@ SHAPES: dict[str, tuple[tuple[str, ...], tuple[str, ...] | None]] = {
     "graph-bound": (("b", "p"), None),  # one a stance
     "graph-entries": (("after", "before", "bits", "trees"), None),  # one an entry
     "graph-componentwise": (("b", "p"), None),  # one a state of each stance
+    "product": (("bits", "points", "power"), ("lower",)),
 }
 NAMED = re.compile(r"(?:over\[([1-9][0-9]{0,3})\]:)?(?:([A-Za-z]\w*(?:>[A-Za-z]\w*)?):)?(.*)", re.ASCII | re.DOTALL)
 

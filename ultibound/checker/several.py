@@ -14,9 +14,10 @@ from .jacobians import Table, middle_and_half
 from .matrices import Leaf, Matrix, Metric, comparison, entries, metric, norm_at_most
 from .numerals import Rejected, quantity
 from .periodic import periodic
-from .theorems import Line, Quantities, magnitude, parted, require
+from .products import product
+from .theorems import Line, Quantities, fewer, magnitude, parted, require
 
-OWN = ("metric", "matrix", "entries", "stretch", "componentwise", "invariant-rows", "periodic")
+OWN = ("metric", "matrix", "entries", "stretch", "componentwise", "invariant-rows", "periodic", "product")
 KEPT = 5000  # leaves in memory
 
 
@@ -103,10 +104,7 @@ def concluded(
 ) -> Line | None:
     """A line of a rule that is about several states; None where the rule is another's."""
     several, line = len(d.states) > 1, Line(rule, proves, (), claimed)
-    if (
-        rule in ("metric", "matrix", "entries", "stretch", "componentwise", "invariant-rows", "periodic")
-        and not several
-    ):
+    if rule in OWN and not several:
         raise Rejected(f"{rule}: the claim has a single state")
     if rule == "metric":
         return replace(line, metric=stated(d, proves, used, witness))
@@ -119,6 +117,8 @@ def concluded(
         return replace(line, domain=componentwise(d, proves, used, witness, claimed))
     if rule == "periodic":
         return replace(line, domain=periodic(d, proves, used, witness, claimed))
+    if rule == "product":
+        return product(d, proves, used, witness, claimed)
     if rule == "invariant-rows":
         return replace(line, domain=invariant_rows(d, proves, used, claimed))
     if several and rule in ("largest-ball", "smaller-ball"):
@@ -204,7 +204,7 @@ def largest(leaves: Iterable[Leaf], basis: tuple[Matrix, Matrix], proves: str) -
     count = 0
     for leaf in leaves:
         count += 1
-        here = entries(rows, inverse if proves == "slopes" else None, leaf)
+        here = entries(rows, inverse if proves.startswith("slopes") else None, leaf)
         found = tuple(tuple(map(max, a, b)) for a, b in zip(found, here, strict=True)) if found else here
     return found, count
 
@@ -229,7 +229,7 @@ def stretch(
     direction = numbers(witness["direction"], "direction", len(middle[0]))
     image = [sum((x * y for x, y in zip(row, direction, strict=True)), Fraction(0)) for row in middle]
     off = [sum((x * abs(y) for x, y in zip(row, direction, strict=True)), Fraction(0)) for row in half]
-    size = before.most(direction) if proves == "slopes" else abs(direction[0])
+    size = before.most(direction) if proves.startswith("slopes") else abs(direction[0])
     if not size > 0 or not claimed["lower"] * size <= after.least(image) - after.length(off):
         raise Rejected(f"{proves}: the direction is not shown to be stretched by so much")
 
@@ -249,7 +249,8 @@ def moved(d: Derivation, lines: list[Line]) -> list[Fraction]:
 def slope(d: Derivation, proves: str, used: list[Line], claimed: Quantities) -> Domain:
     """proofs/several.md (2): gain and residual in the metric."""
     ranges = [("range", f"target-slope[{s},{h}]") for s, h in movements(d)]
-    require(proves, "slope", used, [("matrix", "slopes"), ("matrix", "misses"), *ranges])
+    on = fewer(proves)
+    require(proves, f"slope{on}", used, [("matrix", f"slopes{on}"), ("matrix", f"misses{on}"), *ranges])
     domain = used[0].domain
     if domain is None or domain.metric is None or used[1].domain != domain:
         raise Rejected("the residual refers to another set")

@@ -6,7 +6,7 @@ from fractions import Fraction
 
 from .grammar import Node, Refused, exact, powered
 
-DEEPEST, MOST_PAIRS = 40, 10_000
+DEEPEST, MOST_PAIRS, MOST_ADDENDS = 40, 10_000, 5_000
 FOLDED = frozenset(["add", "sub", "mul", "div", "neg", "sqrt", "abs", "min", "max"])
 Term = tuple[str, tuple[int, ...], Fraction | str | None]
 
@@ -61,8 +61,18 @@ class Terms:
                 found.append((sign, k))
         return found
 
+    def count(self, root: int) -> int:
+        """How many addends a term has, each as often as it is added."""
+        found: dict[int, int] = {}
+        for k in self.below(root):
+            op, args, _ = self.all[k]
+            found[k] = sum(found[a] for a in args) if op in ("add", "sub", "neg") else 1
+        return found[root]
+
     def difference(self, a: int, b: int, deep: int = 0) -> int:
         """a − b without the terms and factors both have: proofs/split.md (2)."""
+        if self.count(a) + self.count(b) > MOST_ADDENDS:
+            return self.put("sub", (a, b))
         net: dict[int, int] = {}
         met: list[set[int]] = []
         for side, root in ((1, a), (-1, b)):

@@ -76,7 +76,7 @@ def invariant_ball(d: Derivation, proves: str, used: list[Line], claimed: Quanti
     if proves != "invariant" or [x.proves for x in used[:1]] != ["ball"] or len(used) != 2:
         raise Rejected("invariant rests on the ball, then a gain and residual")
     ball, pair = used
-    if pair.rule not in PAIRS or pair.domain != ball.domain or ball.domain is None:
+    if pair.rule not in PAIRS or pair.proves != pair.rule or pair.domain != ball.domain or ball.domain is None:
         raise Rejected("the gain refers to another set")
     r = ball.domain.radius
     if not pair.concludes["gain"] * r + pair.concludes["residual"] <= r:
@@ -86,8 +86,8 @@ def invariant_ball(d: Derivation, proves: str, used: list[Line], claimed: Quanti
 
 def slope(d: Derivation, proves: str, used: list[Line], claimed: Quantities) -> Domain | None:
     """proofs/slope.md: k from the slopes over the set, the residual from the target's own step and movement."""
-    s = d.state
-    return mean_value(d, proves, used, claimed, ("slope", f"slope[{s},{s}]", f"target-miss[{s}]"))
+    s, on = d.state, fewer(proves)
+    return mean_value(d, proves, used, claimed, (f"slope{on}", f"slope{on}[{s},{s}]", f"target-miss{on}[{s}]"))
 
 
 def split(d: Derivation, proves: str, used: list[Line], claimed: Quantities) -> Domain | None:
@@ -96,6 +96,11 @@ def split(d: Derivation, proves: str, used: list[Line], claimed: Quantities) -> 
     if len(used) > 1 and used[1].domain != used[0].domain:
         raise Rejected("the residual refers to another set")
     return mean_value(d, proves, used, claimed, ("split", f"split-slope[{s},{s}]", f"split-residual[{s}]"))
+
+
+def fewer(proves: str) -> str:
+    """What stands behind the name of a slope over fewer steps than the claim takes together."""
+    return proves[len("slope") :] if proves.startswith("slope@") else ""
 
 
 def mean_value(
@@ -168,12 +173,37 @@ def ultimate_bound(d: Derivation, proves: str, used: list[Line], claimed: Quanti
     invariant, pair = used
     if proves != f"bound[{pair.rule}]":
         raise Rejected(f"uses: gain and residual of another route than {proves}")
-    if pair.domain != invariant.domain:
-        raise Rejected("the gain refers to another set")
+    if pair.domain != invariant.domain or pair.proves != pair.rule:
+        raise Rejected("the gain refers to another set, or to fewer steps")
     k, residual = pair.concludes["gain"], pair.concludes["residual"]
     if not (0 <= k < 1 and claimed["bound"] >= residual / (1 - k)):
         raise Rejected("bound: less than residual / (1 - gain), or the gain is not below 1")
     return invariant.domain
+
+
+def course(d: Derivation, proves: str, used: list[Line], claimed: Quantities) -> Domain:
+    """proofs/horizon.md (2): the first step keeps the ball, or every step on the way stays in the region."""
+    n, ball = d.statement.horizon, used[0].domain if used and used[0].proves == "ball" else None
+    steps = range(1, n if len(used) > 2 else 2)
+    require(proves, "course", used[1:], [("slope", f"slope@{j}") for j in steps])
+    if n == 1 or ball is None or any(line.domain != ball for line in used[1:]):
+        raise Rejected("a course rests on the ball, then gain and residual of steps on the way")
+    first = used[1].concludes
+    if first["gain"] * ball.radius + first["residual"] <= ball.radius:
+        return ball
+    if len(used) < n:
+        raise Rejected("the first step does not keep the ball, and of later ones nothing is shown")
+    ends = [
+        tuple(x.concludes["gain"] * r + x.concludes["residual"] for r in (ball.radius, ball.outer)) for x in used[1:]
+    ]
+    radius, outer = (max(x) for x in zip((ball.radius, ball.outer), *ends, strict=True))
+    for i, s in enumerate(d.states):
+        low, high = ball.targets[i] if ball.targets else ball.target
+        _, inner = d.region(s)
+        wide = Fraction(1) if ball.metric is None else ball.metric.support(i)
+        if not radius * wide <= min(low - inner[0], inner[1] - high):
+            raise Rejected(f"a step on the way is not shown to stay in the region of {s}")
+    return replace(ball, radius=radius, beyond=max(outer, radius) - radius)
 
 
 THEOREMS = {
@@ -184,6 +214,7 @@ THEOREMS = {
     "split": split,
     "curve": curve,
     "invariant-ball": invariant_ball,
+    "course": course,
     "ultimate-bound": ultimate_bound,
 }
 

@@ -10,6 +10,7 @@ from .errors import Bad
 from .expression import Node
 
 MAX_CANCELLED, MAX_PAIRS = 40, 10_000  # products within products that are told apart, and pairs of them in a sum
+MAX_ADDENDS = 5_000  # of two sums whose common terms are looked for
 FOLDED = frozenset({"add", "sub", "mul", "div", "neg", "sqrt", "abs", "min", "max"})
 
 
@@ -72,6 +73,8 @@ class Graph:
 
     def difference(self, a: int, b: int, depth: int = 0) -> int:
         """a − b, an identity wherever both are defined: common terms cancel, common factors are taken out."""
+        if self._addends(a) + self._addends(b) > MAX_ADDENDS:
+            return self.add("sub", a, b)
         net, other = self._sum(a), self._sum(b)
         alone = sorted(set(net) ^ set(other))
         for gate, count in other.items():
@@ -94,6 +97,14 @@ class Graph:
         for gate in minus:
             total = self.add("sub", total, gate)
         return total
+
+    def _addends(self, root: int) -> int:
+        """How many terms a sum has, repeated ones counted."""
+        found: dict[int, int] = {}
+        for k in self.reached((root,)):
+            gate = self.gates[k]
+            found[k] = sum(found[a] for a in gate.args) if gate.op in ("add", "sub", "neg") else 1
+        return found[root]
 
     def _sum(self, root: int) -> dict[int, int]:
         """How often each addend stands in a sum, negative where it is taken away."""

@@ -8,6 +8,7 @@ from __future__ import annotations
 from collections.abc import Mapping, Sequence
 from dataclasses import dataclass, replace
 from fractions import Fraction
+from functools import partial
 from itertools import pairwise
 from math import prod
 
@@ -17,6 +18,7 @@ from .graph import Graph
 from .model import Claim, Quantity, Range, Requirement, Stance
 from .motion import PHASE, Motion, copy, grown, landed, motion, supported
 from .resolve import Scope
+from .signals import excess, followed, instant
 
 RANGED = ("value", "sensitivity", "always", "throughout")  # requirements that a range proves
 MOST_CELLS = 1_000_000
@@ -93,8 +95,14 @@ class Obligations:
         met = {s: self.graph.variables(self._scope({}).name(f"target({s})")) for s in self.states}
         self._fixed_targets = {s for s, names in met.items() if not names}
 
-    def _scope(self, bound: Mapping[str, int], cut: str = "") -> Scope:
-        return Scope(self.graph, self.claim, self.stance, bound, cut, self._landed)
+    def _scope(self, bound: Mapping[str, int], cut: str = "", parts: int = 0) -> Scope:
+        """`parts`: into how many a stance is cut for signals of any course; 0: they are constants."""
+        landing = partial(self._followed, parts=parts) if parts else self._landed
+        return Scope(self.graph, self.claim, self.stance, bound, cut, landing)
+
+    def _followed(self, scope: Scope, gate: int, parts: int) -> int:
+        m = self.motion
+        return gate if m is None else followed(scope, m, gate, parts, {d: self._middle(d) for d in m.signals})
 
     def _landed(self, scope: Scope, gate: int, phase: int | None = None) -> int:
         return gate if self.motion is None else landed(scope, self.motion, gate, phase)
@@ -109,19 +117,57 @@ class Obligations:
         s = state or self.state
         return self._of(f"image[{s}]", self._scope({}).name(f"next({s})"))
 
-    def slope(self, domain: Domain, of: str = "", by: str = "") -> Obligation:
-        """slope[s,x]: ∂F_s/∂x over the set and uncertain values."""
+    def slope(self, domain: Domain, of: str = "", by: str = "", steps: int = 0) -> Obligation:
+        """slope[s,x]: ∂F_s/∂x over the set and uncertain values; slope@j[s,x]: of j steps, fewer than the horizon."""
         bound, ranges = self._set(domain)
-        s, x = of or self.state, by or self.state
-        return self._of(f"slope[{s},{x}]", self._scope(bound, cut=x).name(f"next({s})"), x, ranges)
+        s, x, on = of or self.state, by or self.state, f"@{steps}" if steps else ""
+        return self._of(f"slope{on}[{s},{x}]", self._after(bound, s, x, steps), x, ranges)
 
-    def miss(self, state: str = "", after: Stance | None = None) -> Obligation:
-        """target-miss[s]: F(x*, w) − x* over uncertain values; the second x* of the stance that follows, if any."""
-        s = state or self.state
+    def miss(self, state: str = "", steps: int = 0, onto: Stance | None = None) -> Obligation:
+        """target-miss[s]: F(x*, w) − x* over uncertain values; target-miss@j[s]: of j steps.
+
+        `onto`: the second x* is that of the stance that follows.
+        """
+        s, on = state or self.state, f"@{steps}" if steps else ""
         targets = {x: self._scope({}).name(f"target({x})") for x in self.states}
-        step = self._scope(targets).name(f"next({s})")
-        aim = Scope(self.graph, self.claim, after or self.stance).name(f"target({s})")
-        return self._of(f"target-miss[{s}]", self.graph.difference(step, aim))
+        aim = Scope(self.graph, self.claim, onto or self.stance).name(f"target({s})")
+        return self._of(f"target-miss{on}[{s}]", self.graph.difference(self._after(targets, s, steps=steps), aim))
+
+    def _after(self, bound: Mapping[str, int], s: str, cut: str = "", steps: int = 0, parts: int = 0) -> int:
+        """A state after the steps of the horizon, or as many as said, less what the target has moved until the last.
+
+        proofs/horizon.md (1)
+        """
+        scope, count = self._scope(bound, cut, parts), steps or self.claim.horizon
+        for j in range(2, count + 1):
+            scope = self._scope({**bound, **self._onward(scope, j)})
+        root, target = scope.name(f"next({s})"), f"target({s})"
+        if count == 1 or not self.moving(s):
+            return root
+        g = self.graph
+        return g.add("add", root, g.add("sub", self._scope({}).name(target), scope.name(target)))
+
+    def _onward(self, scope: Scope, step: int) -> dict[str, int]:
+        """Gates that names stand for at a step, from those of the step before."""
+        g, found = self.graph, dict[str, int]()
+        for n, q in self.claim.uncertain.items():
+            again = g.add("variable", name=f"{n}@{step}")
+            if not q.held:
+                found[n] = again
+            elif q.change is not None:
+                found[n] = self._stays(g.add("add", scope.name(n), again), n)
+        return found | {s: self._stays(scope.name(f"next({s})"), s) for s in self.states}
+
+    def _stays(self, x: int, name: str) -> int:
+        """Clipped to the range a library or a flow is known for, where the claim has one."""
+        if not self.claim.libraries and self.motion is None:
+            return x
+        g, (low, high) = self.graph, self._cells(self._quantity(name))[0][0]
+        return g.add("min", g.add("max", x, g.number(low)), g.number(high))
+
+    def _quantity(self, name: str) -> Quantity:
+        """The state or uncertain quantity that a variable is, at whatever step."""
+        return self.stance.states.get(name) or self.claim.uncertain[name.partition("@")[0]]
 
     def moving(self, state: str = "") -> list[str]:
         """Held quantities with a `change` on which the target depends."""
@@ -138,22 +184,49 @@ class Obligations:
 
     def split_slope(self, domain: Domain) -> Obligation:
         """split-slope[s,s]: ∂(x + F − N)/∂x over the set, N the map without its correction (proofs/split.md)."""
+        s, (bound, ranges) = self.state, self._set(domain)
+        return self._of(f"split-slope[{s},{s}]", self._split(bound), s, ranges)
+
+    def _split(self, bound: dict[str, int], parts: int = 0) -> int:
         s, g = self.state, self.graph
-        bound, ranges = self._set(domain)
-        full, nominal = self._scope(bound, cut=s), self._scope({**bound, **self._uncorrected()}, cut=s)
-        change = g.difference(full.name(f"next({s})"), nominal.name(f"next({s})"))
-        return self._of(f"split-slope[{s},{s}]", g.add("add", full.name(s), change), s, ranges)
+        change = g.difference(
+            self._after(bound, s, s, parts=parts), self._after({**bound, **self._uncorrected()}, s, s, parts=parts)
+        )
+        return g.add("add", self._scope(bound, s).name(s), change)
+
+    def under_any_course(self, domain: Domain, parts: int, route: str = "slope") -> Obligation:
+        """signal-slope[M], split-signal-slope[M]: what the route takes slopes of, signals of any course in M parts.
+
+        Each part has a phase and a value of every signal (proofs/signals.md). Raises Bad where no such bound is known.
+        """
+        s, (bound, ranges) = self.state, self._set(domain)
+        split = route == "split"
+        root = self._split(bound, parts) if split else self._scope(bound, s, parts).name(f"next({s})")
+        name = f"{'split-' if split else ''}signal-slope[{parts}]"
+        return self._of(name, root, s, {**self._courses(parts), **ranges})
+
+    def _courses(self, parts: int) -> dict[str, tuple[Ends, Ends]]:
+        """Phases of the parts of a stance, and what signals may be above the middles of their ranges."""
+        found: dict[str, tuple[Ends, Ends]] = {}
+        for d in self.motion.signals if self.motion is not None else ():
+            ((low, high),), _, _ = self._cells(self.claim.uncertain[d])
+            middle = self._middle(d)
+            for q in range(parts):
+                found[instant(d, q + 1)] = ((Fraction(q, parts), Fraction(q + 1, parts)),) * 2
+                found[excess(d, q + 1)] = ((low - middle, high - middle),) * 2
+        return found
+
+    def _middle(self, signal: str) -> Fraction:
+        ((low, high),), _, _ = self._cells(self.claim.uncertain[signal])
+        return (low + high) / 2
 
     def split_residual(self, domain: Domain) -> Obligation:
         """split-residual[s]: N − x + F(x*) − N(x*) over the set."""
         s, g = self.state, self.graph
         bound, ranges = self._set(domain)
         at = {s: self._scope({}).name(f"target({s})")}
-        kept = g.add(
-            "sub", self._scope({**bound, **self._uncorrected()}).name(f"next({s})"), self._scope(bound).name(s)
-        )
-        there = self._scope({**at, **self._uncorrected()}).name(f"next({s})")
-        shift = g.difference(self._scope(at).name(f"next({s})"), there)
+        kept = g.add("sub", self._after({**bound, **self._uncorrected()}, s), self._scope(bound).name(s))
+        shift = g.difference(self._after(at, s), self._after({**at, **self._uncorrected()}, s))
         return self._of(f"split-residual[{s}]", g.add("add", kept, shift), "", ranges)
 
     def _uncorrected(self) -> dict[str, int]:
@@ -172,7 +245,7 @@ class Obligations:
         s, g = self.state, self.graph
         target = self._scope({}).name(f"target({s})")
         x = self._kept(g.add("add", target, g.add("variable", name=f"error({s})")), domain)
-        root = g.difference(self._scope({s: x}).name(f"next({s})"), target)
+        root = g.difference(self._after({s: x}, s), target)
         return self._of("error", root, "", {f"error({s})": ((-radius, radius),) * 2})
 
     def line(self, domain: Domain, slope: Fraction) -> Obligation:
@@ -180,8 +253,8 @@ class Obligations:
         s, g = self.state, self.graph
         bound, ranges = self._set(domain)
         scope = self._scope(bound)
-        target = scope.name(f"target({s})")
-        far, error = (g.add("abs", g.difference(scope.name(x), target)) for x in (f"next({s})", s))
+        target, ends = scope.name(f"target({s})"), (self._after(bound, s), scope.name(s))
+        far, error = (g.add("abs", g.difference(x, target)) for x in ends)
         return self._of(f"line[{s}]", g.add("sub", far, g.add("mul", g.number(slope), error)), "", ranges)
 
     def requirement(self, number: int, domain: Domain) -> Obligation:
@@ -294,6 +367,11 @@ class Obligations:
         phase = self.graph.add("variable", name=PHASE)
         return {n for k in self.motion.positive for n in self.graph.variables(supported(scope, self.motion, k, phase))}
 
+    def loose(self, route: str) -> bool:
+        """Whether the slopes of a route are those at constant signals only (proofs/stance.md (5))."""
+        whole = Domain("region", Fraction(0), (Fraction(0), Fraction(0)))
+        return self._stirred((self.split_slope(whole) if route == "split" else self.slope(whole)).root, self.state)
+
     def _stirred(self, root: int, by: str) -> bool:
         """Whether a signal's effect follows a marked name (proofs/stance.md (5))."""
         n = len(self.motion.states) if self.motion is not None else 0
@@ -356,13 +434,20 @@ class Obligations:
         cells, inside, listed = (
             ((ranges[name][0],), ranges[name][1], False)
             if name in ranges
-            else self._cells(self.stance.states.get(name) or self.claim.uncertain[name])
+            else self._moved(name)
+            if "@" in name and self._quantity(name).held
+            else self._cells(self._quantity(name))
         )
         if not listed:
             (low, high), lines = cells[0], self._lines(name, root)
             ends = [low, *sorted(x for x in lines if low < x < high), high]
             cells = tuple(pairwise(ends))
         return Variable(name, cells, inside, listed)
+
+    def _moved(self, name: str) -> tuple[tuple[Ends, ...], Ends, bool]:
+        """What a held quantity moves by in a step of a horizon; a point may stay."""
+        most = self.change(self._quantity(name).name)
+        return ((-most, most),), (Fraction(0), Fraction(0)), False
 
     def _lines(self, name: str, root: int) -> set[Fraction]:
         """Grid lines of the library axes that read a variable directly."""

@@ -58,8 +58,10 @@ def not_yet(claim: Claim) -> str | None:
         return f"state: {len(stance.states)} states; claims of up to {MOST_STATES} states can be proved"
     if several and claim.route not in ("best", "slope"):
         return f"route: {claim.route} is known for a single state; use slope or best"
-    if claim.horizon != 1:
-        return f"horizon: {claim.horizon}; only one step at a time can be proved yet; remove the key"
+    if claim.horizon > 1 and any(q.within for q in claim.uncertain.values()):
+        return "horizon: a signal within the stance is followed for one step at a time only; remove the key"
+    if claim.horizon > 1 and any(q.change is not None and q.values is not None for q in claim.uncertain.values()):
+        return "horizon: a held quantity of a finite list that changes is followed for one step at a time only, yet"
     if claim.route == "sector":
         return "route: sector cannot be proved yet; use slope, split, curve or best"
     if claim.route == "split" and not claim.correction:
@@ -97,13 +99,13 @@ def _not_between(claim: Claim) -> str | None:
         return f"stance: {len(claim.stances)} stances; claims of up to {MOST_STANCES} stances can be proved"
     if claim.route not in ("best", "slope"):
         return f"route: {claim.route} is not known between stances yet; use slope or best"
+    if claim.horizon != 1:
+        return f"horizon: {claim.horizon}; between stances one step at a time can be proved yet; remove the key"
     for number, r in enumerate(claim.requirements, 1):
         if r.during:
             return f"require[{number}]: a push during the stance cannot be proved between stances yet"
         if r.over and r.kind not in RANGED:
             return f"require[{number}].over: ranges for a set and gain of its own cannot be proved between stances yet"
-        if r.kind == "sharp_bound":
-            return f"require[{number}]: sharp_bound needs the curve route, which is not known between stances yet"
     return None
 
 

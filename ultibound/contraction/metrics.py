@@ -37,6 +37,7 @@ from typing import Any
 import numpy as np
 
 from ..bounding.intervals import Floats
+from .samples import extremes
 
 KINDS = ("box", "polytope", "ellipsoid")
 MOST = 8
@@ -144,8 +145,8 @@ def proposals(
         return [_proposal("box", rows, s)[1]]
 
     few = _Samples(
-        unit.jacobians[_extremes(unit.jacobians.reshape(len(s.jacobians), -1), LARGEST)],
-        unit.misses[_extremes(unit.misses, LARGEST)],
+        unit.jacobians[extremes(unit.jacobians.reshape(len(s.jacobians), -1), LARGEST)],
+        unit.misses[extremes(unit.misses, LARGEST)],
         unit.room,
     )
     with np.errstate(all="ignore"):
@@ -296,8 +297,8 @@ def _polytopes(s: _Samples) -> Iterator[Floats]:
 
 def _changed(v: Floats, s: _Samples) -> Floats:
     """A better basis by seeded random changes, which grow after a success and shrink after a failure."""
-    some = s.jacobians[_extremes(s.jacobians.reshape(len(s.jacobians), -1), 48)]
-    few = _Samples(some, s.misses[_extremes(s.misses, 48)], s.room)
+    some = s.jacobians[extremes(s.jacobians.reshape(len(s.jacobians), -1), 48)]
+    few = _Samples(some, s.misses[extremes(s.misses, 48)], s.room)
     rng, step, n = np.random.default_rng(0), 0.1, len(v)
     best = _merit(_judged("polytope", v, few))
     for _ in range(CHANGES):
@@ -515,22 +516,9 @@ def _definite(p: Floats | None) -> Floats | None:
 
 def _rate(s: _Samples) -> float:
     """A lower limit of every gain: spectral radii of the Jacobians and, of extreme ones, of products of two."""
-    some = s.jacobians[_extremes(s.jacobians.reshape(len(s.jacobians), -1), 24)]
+    some = s.jacobians[extremes(s.jacobians.reshape(len(s.jacobians), -1), 24)]
     two = np.abs(np.linalg.eigvals(some[:, None] @ some[None])).max(axis=2).max()
     return float(max(np.abs(np.linalg.eigvals(s.jacobians)).max(), np.sqrt(two)))
-
-
-def _extremes(points: Floats, most: int) -> list[int]:
-    """Rows that are largest along an axis or a seeded random direction, either way."""
-    if len(points) <= most // 2:
-        return list(range(len(points)))
-    width = points.shape[1]
-    random = np.random.default_rng(0).standard_normal((4 * most, width))
-    centred = points - points.mean(axis=0)
-    scores = centred @ np.concatenate([np.eye(width), random]).T
-    counts = np.bincount(np.abs(scores).argmax(axis=0), minlength=len(points))
-    longest = [int(i) for i in np.argsort(-counts, kind="stable")[:most] if counts[i]]
-    return sorted(longest)
 
 
 def _gains(p: Floats, jacobians: Floats) -> Floats:
@@ -573,8 +561,8 @@ class _Programme:
         self.s, self.solver, self.margin, self.bounded = s, solver, margin, bounded
         self.scale = float(np.linalg.norm(s.misses, axis=1).max(initial=0.0)) or 1.0
         self.misses = s.misses / self.scale
-        self.held = _extremes(s.jacobians.reshape(len(s.jacobians), -1), 8)
-        self.met = _extremes(self.misses, 16) if bounded else []
+        self.held = extremes(s.jacobians.reshape(len(s.jacobians), -1), 8)
+        self.met = extremes(self.misses, 16) if bounded else []
         self.failures = 0
         self.built: tuple[Any, Any, Any] | None = None
 

@@ -147,11 +147,26 @@ def over_boxes(norm: Norm, a: Affine) -> tuple[Floats, Floats]:
         chosen = np.zeros((boxes, count))
         chosen[:, moving] = some[best]
         where = np.where(better[:, None], chosen, where)
+    if len(order) > len(moving):
+        _further(norm, centre, slopes, where)
     if norm.round:
         gram = rest.transpose(0, 2, 1) @ rest
         spread = np.minimum(np.trace(gram, axis1=1, axis2=2), np.abs(gram).sum(axis=2).max(axis=1))
         found = found + np.sqrt(spread)
     return np.where(np.isfinite(found), found, np.inf), where
+
+
+def _further(norm: Norm, centre: Floats, slopes: Floats, where: Floats) -> None:
+    """Signs of the variables that no corner tells apart: each the one that makes the norm larger."""
+    here = centre + np.einsum("bk,bkij->bij", where, slopes)
+    for k in np.flatnonzero(slopes.any(axis=(0, 2, 3))):
+        still = where[:, k] == 0
+        sides = [here + sign * slopes[:, k] for sign in (1.0, -1.0)]
+        sizes = [_length(x) if norm.round else np.abs(x).sum(axis=2).max(axis=1) for x in sides]
+        sign = np.where(sizes[0] >= sizes[1], 1.0, -1.0)
+        where[:, k] = np.where(still, sign, where[:, k])
+        step = sign[:, None, None] * slopes[:, k]
+        here = np.where(still[:, None, None], here + step, here)
 
 
 def worth(norm: Norm, a: Affine) -> Floats:

@@ -5,7 +5,6 @@ Floating point: what is found is a witness that the checker follows exactly (pro
 
 from __future__ import annotations
 
-from collections.abc import Iterator
 from dataclasses import dataclass
 from fractions import Fraction
 
@@ -58,10 +57,12 @@ class Steering:
         self.rows = {n: np.array([to_float(w[n]) for w in self.fresh]) for n in self.fresh[0]}
 
     def step(self, x: Floats, held: list[Values], fresh: dict[str, Floats]) -> Floats:
-        """Next states (runs, choices): of each run, with its held values, by every choice of fresh values."""
+        """Next states (runs, choices): of each run, with its held values, by every choice of fresh values.
+
+        These are (choices), the same for all runs, or (runs, choices)."""
         choices = [np.array([[to_float(h[n])] for h in held]) if n in held[0] else fresh.get(n) for n in self.names]
         columns = [x[:, None] if n == self.state else c for n, c in zip(self.names, choices, strict=True)]
-        width = len(next(iter(fresh.values()))) if fresh else 1
+        width = next(iter(fresh.values())).shape[-1] if fresh else 1
         at = np.stack([np.broadcast_to(c, (len(x), width)).ravel() for c in columns if c is not None], axis=1)
         return self.runner(at, at, gradient=False).low.reshape(len(x), width)
 
@@ -93,7 +94,7 @@ class Steering:
         return found
 
 
-def orbits(steering: Steering, starts: list[float]) -> Iterator[tuple[float, Course]]:
+def orbits(steering: Steering, starts: list[float]) -> list[tuple[float, Course]]:
     """Periodic orbits and their estimated distance from the target, one a way of steering."""
     runs = [
         Run(aim + start, held, aim, sign)
@@ -101,30 +102,43 @@ def orbits(steering: Steering, starts: list[float]) -> Iterator[tuple[float, Cou
         for start in starts
         for sign in (1, -1, 0)
     ]
+    rounds = []
     for run, (states, chosen) in zip(runs, steering.steered(runs, STEPS), strict=True):
         for p in range(1, LONGEST_PERIOD + 1):
             if len(chosen) == STEPS and chosen[-p:] == chosen[-2 * p : -p]:
-                found = _closed(steering, states[-1], run.held, chosen[-p:], run.aim)
-                if found is not None:
-                    yield found
+                rounds.append((run, states[-1], chosen[-p:]))
                 break
+    return _closed(steering, rounds)
 
 
-def _closed(steering: Steering, x: float, held: Values, chosen: list[int], aim: float) -> tuple[float, Course] | None:
-    """The orbit that repeating the choices leads to."""
-    steps = tuple(steering.fresh[k] for k in chosen)
-    rows = [{n: c[k : k + 1] for n, c in steering.rows.items()} for k in chosen]
-    far = 0.0
-    for _ in range(SETTLE // len(steps)):
-        before, far = x, 0.0
-        for w in rows:
-            far = max(far, abs(x - aim))
-            x = float(steering.step(np.array([x]), [held], w)[0, 0])
-        if abs(x - before) <= STILL * max(abs(x), 1e-300):
-            break
-    else:
-        return None
-    return far, Course((Fraction(x), Fraction(x)), held, steps)
+def _closed(steering: Steering, rounds: list[tuple[Run, float, list[int]]]) -> list[tuple[float, Course]]:
+    """The orbits that repeating the choices leads to, from a state each; all rounds go on side by side."""
+    found: dict[int, tuple[float, Course]] = {}
+    x = np.array([start for _, start, _ in rounds])
+    before, far = x.copy(), [0.0] * len(rounds)
+    taken, going = 0, list(range(len(rounds)))
+    while going:
+        now = [rounds[k][2][taken % len(rounds[k][2])] for k in going]
+        for k in going:
+            far[k] = max(far[k], abs(float(x[k]) - rounds[k][0].aim))
+        fresh = {n: c[now][:, None] for n, c in steering.rows.items()}
+        x[going] = steering.step(x[going], [rounds[k][0].held for k in going], fresh)[:, 0]
+        taken += 1
+        for k in list(going):
+            run, _, chosen = rounds[k]
+            times, rest = divmod(taken, len(chosen))
+            if rest:
+                continue
+            here = float(x[k])
+            still = abs(here - float(before[k])) <= STILL * max(abs(here), 1e-300)
+            if still:
+                steps = tuple(steering.fresh[c] for c in chosen)
+                found[k] = far[k], Course((Fraction(here), Fraction(here)), run.held, steps)
+            if still or times == SETTLE // len(chosen):
+                going.remove(k)
+            else:
+                before[k], far[k] = here, 0.0
+    return [found[k] for k in sorted(found)]
 
 
 def slow_path(steering: Steering, start: Fraction, wanted: float, most: int, target: Fraction | None) -> Course | None:

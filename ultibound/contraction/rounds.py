@@ -6,7 +6,7 @@ the best w is the one with the largest ±u_sᵀ Aʲ m(w); one round of them, rep
 
 from __future__ import annotations
 
-from collections.abc import Callable
+from collections.abc import Callable, Sequence
 from dataclasses import dataclass
 from fractions import Fraction
 
@@ -20,6 +20,16 @@ from .samples import combinations
 LONGEST, FADED, ROUNDS, MOST_HELD = 48, 1e-4, 60, 9
 STEP = 1e-6
 Values = dict[str, Fraction]
+
+
+@dataclass(frozen=True, slots=True)
+class Trial:
+    """A round of values for one state, not followed yet."""
+
+    held: Values
+    centre: Floats
+    state: int
+    steps: tuple[Values, ...]
 
 
 @dataclass(frozen=True, slots=True)
@@ -44,63 +54,83 @@ class Map:
         others = [v for v in variables if v.name not in states]
         self.fresh = combinations([v for v in others if v.name not in held], rng)
         self.held = combinations([v for v in others if v.name in held], rng)[:MOST_HELD]
+        self._ours = [j for j, v in enumerate(variables) if v.name in states]
+        self._ranks = [states.index(variables[j].name) for j in self._ours]
+        self._others = [j for j, v in enumerate(variables) if v.name not in states]
 
-    def after(self, x: Floats, held: Values, fresh: list[Values]) -> Floats:
-        """Next states: a row each of x and of fresh values."""
+    def after(self, x: Floats, values: Floats) -> Floats:
+        """Next states: a row each of x and of what `numbers` gives."""
         at = np.empty((len(x), len(self.variables)))
-        for j, v in enumerate(self.variables):
-            if v.name in self.states:
-                at[:, j] = x[:, self.states.index(v.name)]
-            else:
-                at[:, j] = [to_float(held[v.name] if v.name in held else w[v.name]) for w in fresh]
+        at[:, self._ours] = x[:, self._ranks]
+        at[:, self._others] = values
         return self.run(at)
 
+    def numbers(self, held: Values, fresh: Sequence[Values]) -> Floats:
+        """A row each of all variables but the states."""
+        names = [self.variables[j].name for j in self._others]
+        rows = [[to_float(held[n] if n in held else w[n]) for n in names] for w in fresh]
+        return np.array(rows).reshape(len(fresh), len(names))
 
-def courses(step: Map, slack: float) -> list[Course]:
-    """For each state the course that takes it furthest; none where the map has no value."""
-    found: dict[str, Course] = {}
+
+def courses(step: Map, slack: float, horizon: int) -> list[Course]:
+    """For each state the course of whole horizons that takes it furthest; none where the map has no value."""
+    tried = list[Trial]()
     for held in step.held:
         centre = np.array(step.target(held))
         count, n = len(step.fresh), len(centre)
-        miss = step.after(np.tile(centre, (count, 1)), held, step.fresh) - centre
+        miss = step.after(np.tile(centre, (count, 1)), step.numbers(held, step.fresh)) - centre
         middle = step.fresh[count // 2]
         near = np.vstack([centre + STEP * np.eye(n), centre - STEP * np.eye(n)])
-        moved = step.after(near, held, [middle] * (2 * n))
+        moved = step.after(near, step.numbers(held, [middle] * (2 * n)))
         a = ((moved[:n] - moved[n:]) / (2 * STEP)).T
         if not (np.isfinite(miss).all() and np.isfinite(a).all()):
             continue
-        for i, s in enumerate(step.states):
+        for i in range(len(step.states)):
             for sign in (1.0, -1.0):
-                course = _followed(step, held, centre, i, _chosen(a, miss, i, sign))
-                if course is not None and (s not in found or course.far > found[s].far * (1 + slack)):
-                    found[s] = course
+                chosen = tuple(step.fresh[k] for k in _chosen(a, miss, i, sign, horizon))
+                tried.append(Trial(held, centre, i, chosen))
+    found: dict[str, Course] = {}
+    for trial, course in zip(tried, _followed(step, tried), strict=True):
+        s = step.states[trial.state]
+        if course is not None and (s not in found or course.far > found[s].far * (1 + slack)):
+            found[s] = course
     return list(found.values())
 
 
-def _chosen(a: Floats, miss: Floats, i: int, sign: float) -> list[int]:
+def _chosen(a: Floats, miss: Floats, i: int, sign: float, horizon: int) -> list[int]:
     """The fresh choices of a round, first step first."""
     row, chosen = np.zeros(len(a)), list[int]()
     row[i] = sign
     first = float(np.abs(row).max())
-    for _ in range(LONGEST):
+    for n in range(1, -(-LONGEST // horizon) * horizon + 1):
         chosen.append(int(np.argmax(miss @ row)))
         row = row @ a
-        if not np.isfinite(row).all() or float(np.abs(row).max()) < FADED * first:
+        if n % horizon == 0 and not float(np.abs(row).max()) >= FADED * first:
             break
     return chosen[::-1]
 
 
-def _followed(step: Map, held: Values, centre: Floats, i: int, chosen: list[int]) -> Course | None:
-    """The orbit that a round of choices leads to, from the target."""
-    values = [step.fresh[k] for k in chosen]
-    x, far = centre[None], 0.0
-    for _ in range(ROUNDS):
-        before, far = x, 0.0
-        for w in values:
-            x = step.after(x, held, [w])
-            far = max(far, abs(float(x[0, i] - centre[i])))
-        if not np.isfinite(x).all():
-            return None
-        if np.abs(x - before).max() <= 1e-15 * max(1e-300, float(np.abs(x - centre).max())):
-            break
-    return Course(tuple(float(y) for y in x[0] - centre), held, tuple(values), far)
+def _followed(step: Map, tried: list[Trial]) -> list[Course | None]:
+    """The orbits that rounds of choices lead to, from the target; all rounds go on side by side."""
+    found: list[Course | None] = [None] * len(tried)
+    values = [step.numbers(t.held, t.steps) for t in tried]
+    x = np.array([t.centre for t in tried])
+    before, far = x.copy(), [0.0] * len(tried)
+    taken, going = 0, list(range(len(tried)))
+    while going:
+        x[going] = step.after(x[going], np.array([values[k][taken % len(values[k])] for k in going]))
+        taken += 1
+        for k in list(going):
+            t = tried[k]
+            far[k] = max(far[k], abs(float(x[k, t.state] - t.centre[t.state])))
+            rounds, rest = divmod(taken, len(values[k]))
+            if rest:
+                continue
+            near = np.abs(x[k] - before[k]).max() <= 1e-15 * max(1e-300, float(np.abs(x[k] - t.centre).max()))
+            if near or rounds == ROUNDS or not np.isfinite(x[k]).all():
+                going.remove(k)
+                if np.isfinite(x[k]).all():
+                    found[k] = Course(tuple(float(y) for y in x[k] - t.centre), t.held, t.steps, far[k])
+            else:
+                before[k], far[k] = x[k], 0.0
+    return found

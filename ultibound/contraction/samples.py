@@ -52,3 +52,16 @@ def combinations(variables: list[Variable], rng: np.random.Generator) -> list[di
     else:
         rows = [tuple(x[int(rng.integers(len(x)))] for x in lists) for _ in range(MOST)]
     return [dict(zip(names, row, strict=True)) for row in rows]
+
+
+def extremes(points: Floats, most: int) -> list[int]:
+    """Rows that are largest along an axis or a seeded random direction, either way."""
+    if len(points) <= most // 2:
+        return list(range(len(points)))
+    width = points.shape[1]
+    random = np.random.default_rng(0).standard_normal((4 * most, width))
+    centred = points - points.mean(axis=0)
+    scores = centred @ np.concatenate([np.eye(width), random]).T
+    counts = np.bincount(np.abs(scores).argmax(axis=0), minlength=len(points))
+    longest = [int(i) for i in np.argsort(-counts, kind="stable")[:most] if counts[i]]
+    return sorted(longest)

@@ -112,7 +112,7 @@ class GraphAttempt(Attempt):
         for k, r in enumerate(self.claim.requirements, 1):
             for s, x in each.items():
                 if r.kind in RANGED and r.stance in (None, s):
-                    x._range(k, x.domain, on[s])
+                    x._ranged(k, x.domain, on[s], points=True)
 
     def _regions(self, norms: Mapping[str, int], images: Mapping[str, list[int]] | None) -> int | None:
         """The regions are mapped into those that follow, if their images show it: proofs/graph.md (3a)."""

@@ -2,6 +2,9 @@
 
 from __future__ import annotations
 
+from collections.abc import Callable
+from contextlib import suppress
+from dataclasses import replace
 from fractions import Fraction
 from math import floor, prod
 
@@ -38,6 +41,9 @@ TARGET_GAP = 1e-8  # suprema are taken over a ball larger by as much: proofs/inv
 SPARE = 0.01  # share of a smaller ball's radius left free
 MOST_ROUGH = 300  # cells of a library over which no curve is followed unless one is asked for
 ROUGH, QUICK, FEW, MOST = 3e-2, 8, 1, 60  # gap, leaves a shell and shells of a rough curve; shells of a sharp one
+PARTS, PARTED = (1, 4), 1.05  # of a stance for signals of any course, and the ratio to constant ones that is enough
+COURSE_GAP = 1e-3  # each part adds a phase and a value of every signal
+ASKED, UNASKED = 200, 60  # leaves, beside two a cell, where a requirement is about the gain and where none is
 TRIED = 4  # orbits, the furthest first
 REACH, ENOUGH = 10_000, 200  # steps of the longest path, and of one that is longer than asked for
 
@@ -132,13 +138,17 @@ class Attempt:
         domain = Domain("region" if region is not None else "ball", radius, ends, beyond)
         on = ball if region is None else region
         moves = self._moves()
+        most = min(target.lower - w.derivation.region()[1][0], w.derivation.region()[1][1] - target.upper)
+        way, through = self._course(domain, ball, on, lambda j: self._early(j, domain, on, moves), most)
         for number in range(1, len(o.motion.positive) + 1 if o.motion is not None else 1):
-            self.ranges.enclose(o.support(number, domain), on, gap=DECIDED, side=-1)
+            self.ranges.enclose(o.support(number, through), way, gap=DECIDED, side=-1)
         self._growth(domain, on)
-        self._slope(domain, on, moves)
-        self._split(domain, on, moves)
+        lost = way == on == ball and self.claim.horizon > 1  # steps within a horizon may leave the region
+        if not lost:
+            self._slope(domain, on, moves)
+            self._split(domain, on, moves)
         if radius > 0:
-            self._curve(domain, on, moves)
+            self._curve(domain, on, moves, lost)
         invariant = region or self._invariant_ball(ball)
         if invariant is not None:
             for pair in self.pairs.values():
@@ -147,7 +157,41 @@ class Attempt:
             self._paths(invariant, target.lower if target.lower == target.upper else None)
         for number, r in enumerate(self.claim.requirements, 1):
             if r.kind in RANGED and not self.variant:
-                self._range(number, domain, on)
+                self._range(number, through, way, domain, on)
+
+    def _course(
+        self, domain: Domain, ball: int, on: int, early: Callable[[int], int | None], most: Fraction
+    ) -> tuple[int, Domain]:
+        """The steps within a horizon, and where they may lead from the set: proofs/horizon.md (2)."""
+        uses = [ball]
+        for j in range(1, self.claim.horizon):
+            step = early(j)
+            if step is None:
+                break
+            uses.append(step)
+            ends = self.writer.proof.lines[step].concludes
+            if domain.kind == "region" or ends["gain"] * domain.radius + ends["residual"] > most:
+                break
+            try:
+                course = self.writer.theorem("course", "course", uses, {})
+            except Rejected as why:
+                self.ranges.limits["course"] = str(why)
+                continue
+            self.ranges.limits.pop("course", None)
+            found = self.writer.domain(course)
+            return course, domain if found is None else replace(domain, radius=found.radius, beyond=found.beyond)
+        return on, domain
+
+    def _early(self, steps: int, domain: Domain, on: int, moves: list[Proved] | None) -> int | None:
+        """Gain and residual of fewer steps than the horizon, to no more than it takes."""
+        o = self.obligations
+        slope = self.ranges.enclose(o.slope(domain, steps=steps), on, True, points=False, gap=COARSE)
+        miss = self.ranges.enclose(o.miss(steps=steps), None, True, points=False, gap=COARSE)
+        if slope is None or miss is None or moves is None:
+            return None
+        concludes = {"gain": upward(slope.size), "residual": upward(miss.size + self._moved(moves))}
+        uses = [slope.line, miss.line, *(m.line for m in moves)]
+        return self.writer.theorem("slope", f"slope@{steps}", uses, concludes)
 
     def _growth(self, domain: Domain, on: int) -> None:
         """How changes within the stance grow, where a push asks for it: proofs/stance.md (6)."""
@@ -186,7 +230,14 @@ class Attempt:
             low, high = Fraction(ends.lower) - room, Fraction(ends.upper) + room
         return (low, high) if grid is None else (max(low, grid[0]), min(high, grid[-1]))
 
-    def _range(self, number: int, domain: Domain, on: int) -> None:
+    def _range(self, number: int, through: Domain, way: int, domain: Domain, on: int) -> None:
+        """The range of a requirement wherever a step may start; points of it are in the set itself."""
+        self._ranged(number, through, way, points=way == on)
+        if way != on:
+            with suppress(Bad):
+                self.ranges.points(self.obligations.requirement(number, domain), on)
+
+    def _ranged(self, number: int, domain: Domain, on: int, points: bool) -> None:
         """The range of a requirement; of an inequality only as closely as it takes to decide it."""
         r, name = self.claim.requirements[number - 1], f"require[{number}]"
         try:
@@ -195,9 +246,9 @@ class Attempt:
                 side = 1 if r.relation in ("<", "<=") else -1
                 found = self.ranges.search(obligation, False, DECIDED, side=side)
                 if min(found.upper * side, found.lower * side) < 0 or (found.upper if side > 0 else -found.lower) < 0:
-                    self.ranges.enclose(obligation, on, gap=DECIDED, side=side)
+                    self.ranges.enclose(obligation, on, points=points, gap=DECIDED, side=side)
                     return
-            self.ranges.enclose(obligation, on)
+            self.ranges.enclose(obligation, on, points=points)
         except Bad as why:
             self.ranges.limits[name] = str(why)
 
@@ -262,6 +313,7 @@ class Attempt:
         floor = self.gap * self.moved
         miss = self.ranges.enclose(self.obligations.miss(), None, magnitude=True, floor=floor)
         self._pair("slope", slope, miss, moves)
+        self._courses("slope", slope, domain, on)
 
     def _split(self, domain: Domain, on: int, moves: list[Proved] | None) -> None:
         """Gain and residual of the split route, where a correction is named: proofs/split.md."""
@@ -275,6 +327,25 @@ class Attempt:
             floor = self.gap * self.moved
             kept = self.ranges.enclose(of_kept, on, magnitude=True, floor=floor)
             self._pair("split", slope, kept, moves)
+            self._courses("split", slope, domain, on)
+
+    def _courses(self, route: str, slope: Proved | None, domain: Domain, on: int) -> None:
+        """Slopes under signals of any course, where constant ones do not tell: proofs/signals.md."""
+        if slope is None or not self.obligations.loose(route):
+            return
+        asked = any(r.kind == "gain" for r in self.claim.requirements)
+        enough = PARTED * to_float(max(slope.most, -slope.least))  # of what constant signals attain
+        for parts in PARTS if asked else PARTS[:1]:
+            try:
+                of_any = self.obligations.under_any_course(domain, parts, route)
+            except Bad as why:
+                self.ranges.limits[f"signal-slope ({route})"] = str(why)
+                return
+            gap, tops = max(self.gap, COURSE_GAP), prod(len(v.cells) for v in of_any.variables)
+            cells = 2 * tops + (ASKED if asked else UNASKED)
+            found = self.ranges.enclose(of_any, on, magnitude=True, points=False, gap=gap, cells=cells)
+            if found is not None and to_float(found.size) <= enough:
+                return
 
     def _pair(self, route: str, slope: Proved | None, residual: Proved | None, moves: list[Proved] | None) -> None:
         if slope is not None and residual is not None and moves is not None:
@@ -282,8 +353,8 @@ class Attempt:
             uses = [p.line for p in (slope, residual, *moves)]
             self.pairs[route] = self.writer.theorem(route, route, uses, concludes)
 
-    def _curve(self, domain: Domain, on: int, moves: list[Proved] | None) -> None:
-        """Shells of the error curve, the line above them and the sharp bound: proofs/curve.md."""
+    def _curve(self, domain: Domain, on: int, moves: list[Proved] | None, lost: bool) -> None:
+        """Shells of the error curve, the line above them and the sharp bound: proofs/curve.md. A smaller ball to try."""
         o, w, claim = self.obligations, self.writer, self.claim
         cells = prod(len(v.cells) for v in o.slope(domain).variables)
         if moves is None or (cells > MOST_ROUGH and not self.sharp):  # over so many even a rough curve would cost more
@@ -296,6 +367,8 @@ class Attempt:
             kept = profile.largest_kept(SPARE)
             if kept is not None and self.within is None and kept < 0.995 * to_float(outermost):
                 self.smaller = Fraction(f"{kept:.4g}")
+        if lost:
+            return
 
         def level(rho: Fraction) -> float:
             if not self.sharp:

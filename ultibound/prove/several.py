@@ -24,11 +24,12 @@ from ..checker.reals import Undefined
 from ..checker.rules import Rejected
 from ..claim import ClaimError
 from ..claim.constants import constant
-from ..claim.obligations import RANGED, Domain, Obligation, together
+from ..claim.obligations import RANGED, Domain, Obligation, Variable, together
 from ..contraction.metrics import Proposal, proposals
 from ..contraction.norms import Matrices, Norm, Stretched, stretched
-from ..contraction.rounds import Map, courses
-from ..contraction.samples import drawn
+from ..contraction.rounds import MOST_HELD, Map, courses
+from ..contraction.samples import combinations, drawn
+from ..contraction.words import Word, fastest
 from .one import COARSE, DECIDED, Attempt
 
 if TYPE_CHECKING:
@@ -74,11 +75,14 @@ class SeveralAttempt(Attempt):
             on = w.append("invariant-region", "invariant", [number, *lines, *images], {}, {})
         elif found is not None:
             self.domain = self._within(self.norm, found.radius, found.beyond)
-        for k in range(1, len(o.motion.positive) + 1 if o.motion is not None else 1):
-            self.ranges.enclose(o.support(k, self.domain), on, gap=DECIDED, side=-1)
         moves = self._movements()
-        slopes, misses = self._norm("slopes", on), self._norm("misses", on)
+        way, through = self._course(self.domain, ball, on, lambda j: self._step(j, on, moves), self._largest(self.norm))
+        for k in range(1, len(o.motion.positive) + 1 if o.motion is not None else 1):
+            self.ranges.enclose(o.support(k, through), way, gap=DECIDED, side=-1)
+        lost = way == on == ball and self.claim.horizon > 1  # steps within a horizon may leave the region
+        slopes, misses = (None, None) if lost else (self._norm("slopes", on), self._norm("misses", on))
         pair = self._contraction(slopes, misses, moves)
+        self._growing(on, pair)
         tables = self._entries(slopes, misses, on)
         invariant = on if images is not None else self._kept(ball, pair, tables, moves)
         if invariant is not None and pair is not None:
@@ -89,7 +93,7 @@ class SeveralAttempt(Attempt):
                 w.componentwise(invariant, *table, moves)
         for k, r in enumerate(self.claim.requirements, 1):
             if r.kind in RANGED and not self.variant:
-                self._range(k, self.domain, on)
+                self._range(k, through, way, self.domain, on)
 
     def _images(self) -> list[int] | None:
         """The lines that the region is mapped into itself, state by state, where it is: invariant-set.md (1)."""
@@ -165,17 +169,20 @@ class SeveralAttempt(Attempt):
     def _proposed(self, domain: Domain) -> list[Proposal]:
         """Metrics proposed from samples of Jacobians and misses over a set (estimates)."""
         rng = np.random.default_rng(0)
-        slopes, misses = self._matrices("slopes", domain), self._matrices("misses", domain)
-        jacobians, missed = (self._sampled(m, rng) for m in (slopes, misses))
         room = np.array([to_float(x) for x in self._rooms()])
         # a target on the edge: any scale will do
         room = np.where(room > 0, room, max(float(room.max()), 0.0) or 1.0)
-        self.others, weights = [scaled(p) for p in proposals(jacobians, missed[:, :, 0], room)], self._weights()
-        if weights is not None:
-            return proposals(jacobians, missed[:, :, 0], room, "box", weights)
-        if self.claim.metric == "auto":
-            return self.others
-        return [scaled(p) for p in proposals(jacobians, missed[:, :, 0], room, self.claim.metric)]
+        weights, asked = self._weights(), self.claim.metric
+        self.others, found = [], list[Proposal]()
+        for steps in ("@1", "") if self.claim.horizon > 1 else ("",):  # each of the steps has to keep the ball as well
+            slopes, misses = self._matrices(f"slopes{steps}", domain), self._matrices(f"misses{steps}", domain)
+            jacobians, missed = (self._sampled(m, rng) for m in (slopes, misses))
+            self.others += [scaled(p) for p in proposals(jacobians, missed[:, :, 0], room)]
+            if weights is not None:
+                found += proposals(jacobians, missed[:, :, 0], room, "box", weights)
+            elif asked != "auto":
+                found += [scaled(p) for p in proposals(jacobians, missed[:, :, 0], room, asked)]
+        return found if weights is not None or asked != "auto" else self.others
 
     def _sampled(self, matrices: Matrices, rng: np.random.Generator) -> Floats:
         at = drawn(Obligation("samples", 0, "", tuple(matrices.variables), False), SAMPLES, rng)
@@ -204,19 +211,23 @@ class SeveralAttempt(Attempt):
     def _matrices(self, proves: str, domain: Domain, norm: Metric | None = None) -> Matrices:
         """The entries of a matrix over a set, ready to run."""
         o = self.obligations
-        rows = [[o.slope(domain, s, x) for x in o.states] if proves == "slopes" else [self._miss(s)] for s in o.states]
+        kind, _, after = proves.partition("@")
+        rows = [[self._miss(s, int(after or 0))] for s in o.states]
+        if kind == "slopes":
+            rows = [[o.slope(domain, s, x, int(after or 0)) for x in o.states] for s in o.states]
         ready = [[(x, self.ranges.runner(x, False)) for x in row] for row in rows]
         if domain.kind != "ball" or norm is None:
             return Matrices(ready)
         names = [v.name for v in Matrices(ready).variables]
         return Matrices(ready, lambda x: self._into(x, names, domain, norm))
 
-    def _miss(self, s: str) -> Obligation:
-        return self.obligations.miss(s)
+    def _miss(self, s: str, steps: int = 0) -> Obligation:
+        return self.obligations.miss(s, steps)
 
     def _form(self, proves: str, norm: Metric) -> Norm:
         """The norm in which a matrix is seen."""
-        return Norm(floats(norm.rows), floats(norm.inverse) if proves == "slopes" else None, norm.kind == "ellipsoid")
+        inverse = floats(norm.inverse) if proves.startswith("slopes") else None
+        return Norm(floats(norm.rows), inverse, norm.kind == "ellipsoid")
 
     def _into(self, x: Floats, names: list[str], domain: Domain, norm: Metric) -> Floats:
         """Points moved towards the target until they lie in the ball."""
@@ -269,8 +280,22 @@ class SeveralAttempt(Attempt):
         if not k <= most:
             return np.inf
         self.needed = found.leaves
+        if not self._goes(ball, norm):
+            return np.inf
         shares = [to_float(norm.support(i)) / max(to_float(x), 1e-300) for i, x in enumerate(self._rooms())]
         return miss / (1 - k) * max(shares)
+
+    def _goes(self, ball: Domain, norm: Metric) -> bool:
+        """Whether the steps within a horizon stay in the region (an estimate): proofs/horizon.md (2)."""
+        radius, rooms = to_float(ball.radius), [to_float(x) for x in self._rooms()]
+        for j in range(1, self.claim.horizon):
+            k = self._searched(f"slopes@{j}", ball, norm, COARSE, FEW).upper
+            far = k * radius + self._searched(f"misses@{j}", ball, norm, COARSE, FEW).upper + self._shift(norm)
+            if j == 1 and far <= radius * SPARE:
+                return True
+            if not all(far * to_float(norm.support(i)) <= room * SPARE for i, room in enumerate(rooms)):
+                return False
+        return True
 
     def _shift(self, norm: Metric) -> float:
         """How far held quantities move the target in a step, in a norm (an estimate)."""
@@ -283,6 +308,11 @@ class SeveralAttempt(Attempt):
     def _movements(self) -> list[int] | None:
         found = [self.ranges.enclose(self.obligations.target_slope(h, s), None, True) for s, h in moves_of(self.writer)]
         return None if any(x is None for x in found) else [x.line for x in found if x is not None]
+
+    def _step(self, steps: int, on: int, moves: list[int] | None) -> int | None:
+        """Gain and residual of fewer steps than the horizon."""
+        slopes, misses = (self._norm(f"{x}@{steps}", on) for x in ("slopes", "misses"))
+        return self._contraction(slopes, misses, moves, steps)
 
     def _norm(self, proves: str, on: int) -> tuple[int, tuple[str, ...], int] | None:
         """The line of a norm over the set, with a stretch that attains nearly as much; its trees and bits."""
@@ -299,6 +329,9 @@ class SeveralAttempt(Attempt):
                 line = w.matrix(proves, found.trees, bits, on, leaves)
             except (Undefined, Rejected) as why:
                 self.ranges.limits[proves] = str(why)
+                if not bits:  # fractions that grow too long
+                    bits = BITS
+                    continue
                 if found.stopped:
                     return None
                 share /= 16
@@ -321,6 +354,7 @@ class SeveralAttempt(Attempt):
         slopes: tuple[int, tuple[str, ...], int] | None,
         misses: tuple[int, tuple[str, ...], int] | None,
         moves: list[int] | None,
+        steps: int = 0,
     ) -> int | None:
         """Gain and residual in the metric: proofs/several.md (2)."""
         if slopes is None or misses is None or moves is None:
@@ -331,7 +365,45 @@ class SeveralAttempt(Attempt):
             far[s] += max(abs(ends["lower"]), abs(ends["upper"])) * w.derivation.change(h)[1]
         residual = w.proof.lines[misses[0]].concludes["norm"] + self.norm.length(list(far.values()))
         concludes = {"gain": upward(w.proof.lines[slopes[0]].concludes["norm"]), "residual": upward(residual)}
-        return w.append("slope", "slope", [slopes[0], misses[0], *moves], {}, concludes)
+        name = f"slope@{steps}" if steps else "slope"
+        return w.append("slope", name, [slopes[0], misses[0], *moves], {}, concludes)
+
+    def _growing(self, on: int, pair: int | None) -> None:
+        """A product of Jacobians that refutes a gain in every norm: proofs/several.md (7)."""
+        upper = self.writer.proof.lines[pair].concludes["gain"] if pair is not None else None
+        asked = [
+            constant(r.constant, self.claim.values)[1]
+            for n, r in enumerate(self.claim.requirements, 1)
+            if r.kind == "gain" and r.constant is not None and (n == self.variant if self.variant else not r.over)
+        ]
+        wanted = min((c for c in asked if upper is None or upper >= c), default=None)
+        if wanted is None or self.ranges.interrupted or self.claim.horizon > 1:
+            return
+        matrices = self._matrices("slopes", self.domain, self.norm)
+        bits = 0 if self.writer.exact("slopes", on) else BITS
+        best: tuple[Word, list[dict[str, Fraction]]] | None = None
+        for points in self._places(matrices.variables):
+            at = np.array([[to_float(p[v.name]) for v in matrices.variables] for p in points])
+            jacobians = matrices.at(at.reshape(len(points), -1))
+            good = np.flatnonzero(np.isfinite(jacobians).all(axis=(1, 2)))
+            found = fastest(floats(self.norm.rows) @ jacobians[good] @ floats(self.norm.inverse))
+            if found is not None and (best is None or found.rate > best[0].rate):
+                best = found, [points[int(good[k])] for k in found.letters]
+        if best is not None and best[0].rate >= to_float(wanted) * SPARE:
+            with suppress(Undefined, Rejected):
+                self.writer.product(best[1], best[0].power, bits, on, wanted)
+
+    def _places(self, variables: list[Variable]) -> Iterator[list[dict[str, Fraction]]]:
+        """Points of W, each with the same held values; the states anywhere in a region, else at their targets."""
+        rng, states = np.random.default_rng(0), self.obligations.states
+        centres = {s: (t.lower + t.upper) / 2 for s, t in zip(states, self.targets, strict=True)}
+        centres |= {f"error({s})": Fraction(0) for s in states}
+        met = [v.name for v in variables]
+        still = {} if self.domain.kind == "region" else {n: x for n, x in centres.items() if n in met}
+        held = {n for n, q in self.claim.uncertain.items() if q.held}
+        fresh = combinations([v for v in variables if v.name not in held and v.name not in still], rng)
+        for same in combinations([v for v in variables if v.name in held], rng)[:MOST_HELD]:
+            yield [still | same | each for each in fresh]
 
     def _entries(
         self, slopes: tuple[int, tuple[str, ...], int] | None, misses: tuple[int, tuple[str, ...], int] | None, on: int
@@ -393,7 +465,8 @@ class SeveralAttempt(Attempt):
 
         held = frozenset(n for n, q in self.claim.uncertain.items() if q.held)
         bits = 0 if self.writer.exact("misses", uses[0]) else ORBIT_BITS
-        for course in courses(Map([*table.variables, *extra], o.states, run, target, held), self.gap):
+        steps = Map([*table.variables, *extra], o.states, run, target, held)
+        for course in courses(steps, self.gap, self.claim.horizon):
             with suppress(Undefined, Rejected):
                 self.writer.periodic(course.start, course.held, course.steps, uses, bits)
 

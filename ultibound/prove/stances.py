@@ -108,8 +108,8 @@ class StepSearch(SeveralAttempt):
         self.ranges.flows, self.leaves, self.needed = before.ranges.flows, {}, 0
         self.targets = before.targets
 
-    def _miss(self, s: str) -> Obligation:
-        return self.obligations.miss(s, self.after.obligations.stance)
+    def _miss(self, s: str, steps: int = 0) -> Obligation:
+        return self.obligations.miss(s, steps, self.after.obligations.stance)
 
     def _form(self, proves: str, norm: Metric) -> Norm:
         inverse = floats(norm.inverse) if proves == "slopes" else None

@@ -176,7 +176,7 @@ def show(what: RenderableType, to_error: bool) -> None:
 
 def _figure(text: str | None, sign: str) -> str:
     """Seven digits for the eye; the certificate has all of them. Rounding may hide the last digit's direction."""
-    return "?" if text is None else f"{sign}{float(text):.7g}"
+    return "not proved" if text is None else f"{sign}{float(text):.7g}"
 
 
 def _given_away(value: dict[str, str | None], end: str) -> str:
