@@ -187,8 +187,9 @@ def metrics_that_are_refused(m: Any) -> None:
     assert norm(m, "box", six).rows == six
     wrong = matrix([1, 0, 0], [0, 1, HAIR])
     refused(m, "the kind is", lambda: m.metric("ball", one, one, 2))
-    refused(m, "2 to 6 states", lambda: m.metric("box", matrix([1]), matrix([1]), 1))
-    refused(m, "2 to 6 states", lambda: m.metric("box", diagonal(*[1] * 7), diagonal(*[1] * 7), 7))
+    assert norm(m, "box", matrix([2])).rows == matrix([2])
+    refused(m, "1 to 6 states", lambda: m.metric("box", (), (), 0))
+    refused(m, "1 to 6 states", lambda: m.metric("box", diagonal(*[1] * 7), diagonal(*[1] * 7), 7))
     refused(m, "1 to 64 rows", lambda: m.metric("polytope", (), ((), ()), 2))
     many = matrix(*([1, 0], [0, 1]) * 33)
     few, some = matrix([1, *[0] * 63], [0, 1, *[0] * 62]), matrix([1, *[0] * 64], [0, 1, *[0] * 63])

@@ -64,13 +64,13 @@ class NormWriter(Writer):
         self, rule: str, proves: str, uses: list[int], witness: dict[str, Any], concludes: dict[str, str]
     ) -> int:
         """A line the checker goes through at once; raises checker.rules.Rejected where it does not hold."""
-        line = {"rule": rule, "proves": proves, "uses": uses, "witness": witness, "concludes": concludes}
+        line = {"rule": rule, "proves": self.named(proves), "uses": uses, "witness": witness, "concludes": concludes}
         self.proof.add(line)
         self.raw.append(line)
         return len(self.raw)
 
-    def about(self, metric: int, targets: Sequence[int], radius: Fraction) -> int:
-        """The ball of a metric about the targets, the largest in the region as far as points of the targets show."""
+    def about(self, metric: int, targets: Sequence[int], radius: Fraction, largest: bool = True) -> int:
+        """The ball of a metric about the targets; the largest in the region as far as points of the targets show."""
         d, norm = self.derivation, self.proof.lines[metric].metric
         edges = []
         for i, s in enumerate(d.states):
@@ -78,10 +78,10 @@ class NormWriter(Writer):
             row = norm.inverse[i] if norm is not None else ()
             wide = sum(x * x for x in row) if norm is not None and norm.kind == "ellipsoid" else sum(map(abs, row)) ** 2
             for n, x in self.proof.lines.items():
-                if (x.rule, x.proves) == ("point", f"target[{s}]"):
+                if (x.part, x.rule, x.proves) == (self.part, "point", f"target[{s}]"):
                     edge = min(high - x.concludes["lower"], x.concludes["upper"] - low)
                     edges.append((max(edge, Fraction(0)) ** 2 / wide, n))
-        if not edges:
+        if not edges or not largest:
             return self.append("smaller-ball", "ball", [metric, *targets], {}, {"radius": downward(radius)})
         square, nearest = min(edges)
         outer = Fraction(decimal_up(root(square)[1], DIGITS))
@@ -90,7 +90,7 @@ class NormWriter(Writer):
 
     def exact(self, proves: str, on: int) -> bool:
         """Whether exact rational arithmetic can carry all entries of a matrix, and is worth it."""
-        d, domain = self.derivation, self.proof.lines[on].domain
+        d, domain = self.derivation, self.domain(on)
         names = [name for row in named(d, proves) for name in row]
         below = {k for name in names for k in d.terms.below(d.meaning(name, domain).root)}
         cells = 1
@@ -102,29 +102,26 @@ class NormWriter(Writer):
 
     def matrix_seconds(self, proves: str, bits: int, on: int) -> float:
         """How long one leaf of a matrix takes in the checker's arithmetic: the first cell, the second time round."""
-        domain, began = self.proof.lines[on].domain, time.monotonic()
-        if domain is None or domain.metric is None:
+        domain, began, (_, norm) = self.domain(on), time.monotonic(), self.seen(proves, on)
+        if domain is None:
             raise ValueError("no set")
         with suppress(Undefined):
             table = Table(self.derivation, proves, domain, bits, self._flows())
             for _ in range(2):
                 began = time.monotonic()
-                norm_over(domain.metric, table.leaf([v.cells[0] for v in table.variables], "c"))
+                norm_over(norm, table.leaf([v.cells[0] for v in table.variables], "c"))
         return time.monotonic() - began
 
     def leaves(self, proves: str, trees: Sequence[str], bits: int, on: int) -> list[Leaf]:
         """The leaves of a matrix over the set; raises checker.reals.Undefined where one has no enclosure."""
-        domain = self.proof.lines[on].domain
+        domain = self.domain(on)
         if domain is None:
             raise ValueError("no set")
         return list(Table(self.derivation, proves, domain, bits, self._flows()).leaves(list(trees)))
 
     def matrix(self, proves: str, trees: Sequence[str], bits: int, on: int, leaves: list[Leaf]) -> int:
         """The norm of a matrix over the set, as its leaves show it."""
-        domain = self.proof.lines[on].domain
-        norm: Metric | None = None if domain is None else domain.metric
-        if norm is None:
-            raise ValueError("no metric")
+        _, norm = self.seen(proves, on)
         most = Fraction(0)
         for leaf in leaves:
             most = norm_over(norm, leaf, most)
@@ -151,24 +148,35 @@ class NormWriter(Writer):
         concludes: dict[str, str],
         basis: tuple[Matrix, Matrix] | None,
     ) -> int:
-        uses = [on, *([self.flow] if self.flow is not None and self._moves(proves, on) else [])]
-        self.raw.append({"rule": rule, "proves": proves, "uses": uses, "witness": witness, "concludes": concludes})
-        claimed = {k: Fraction(x) for k, x in concludes.items()}
-        domain = self.proof.lines[on].domain
-        self.proof.lines[len(self.raw)] = Line(rule, proves, tuple(uses), claimed, domain, True, basis=basis)
+        uses, claimed = self.rests(proves, on), {k: Fraction(x) for k, x in concludes.items()}
+        line = {"rule": rule, "proves": self.named(proves), "uses": uses, "witness": witness, "concludes": concludes}
+        self.raw.append(line)
+        self.proof.lines[len(self.raw)] = Line(
+            rule, proves, tuple(uses), claimed, self.domain(on), True, basis=basis, part=self.part
+        )
         return len(self.raw)
+
+    def rests(self, proves: str, on: int) -> list[int]:
+        """The lines that a matrix rests on: the set, and the flow of the stance where it is met."""
+        return [on, *([self.flow] if self.flow is not None and self._moves(proves, on) else [])]
+
+    def seen(self, proves: str, on: int) -> tuple[Metric, Metric]:
+        """The norm of errors, and that of what a matrix makes of them, its inverse that of the first."""
+        domain = self.domain(on)
+        if domain is None or domain.metric is None:
+            raise ValueError("no metric")
+        return domain.metric, domain.metric
 
     def _moves(self, proves: str, on: int) -> bool:
         """Whether a matrix rests on the flow of the stance."""
-        d, domain = self.derivation, self.proof.lines[on].domain
+        d, domain = self.derivation, self.domain(on)
         return any(self._flow(d.meaning(name, domain).root) for row in named(d, proves) for name in row)
 
     def stretch(self, proves: str, point: dict[str, Fraction], direction: Sequence[float], bits: int, on: int) -> int:
         """The norm surely taken at a point; raises checker.rules.Rejected where the point is not in the set."""
-        domain = self.proof.lines[on].domain
-        norm = None if domain is None else domain.metric
-        if domain is None or norm is None:
-            raise ValueError("no metric")
+        domain, (before, norm) = self.domain(on), self.seen(proves, on)
+        if domain is None:
+            raise ValueError("no set")
         table = Table(self.derivation, proves, domain, bits, self._flows())
         at = {}
         for v in table.variables:
@@ -177,11 +185,10 @@ class NormWriter(Writer):
         middle, half = middle_and_half(table.at(at))
         image = [sum((x * y for x, y in zip(row, vector, strict=True)), Fraction(0)) for row in middle]
         off = [sum((x * abs(y) for x, y in zip(row, vector, strict=True)), Fraction(0)) for row in half]
-        scale = norm.most(vector) if proves.startswith("slopes") else abs(vector[0])
+        scale = before.most(vector) if proves.startswith("slopes") else abs(vector[0])
         lower = (norm.least(image) - norm.length(off)) / scale
         witness = {"bits": bits, "at": at, "direction": [str(x) for x in vector]}
-        uses = [on, *([self.flow] if self.flow is not None and self._moves(proves, on) else [])]
-        return self.append("stretch", proves, uses, witness, {"lower": downward(lower)})
+        return self.append("stretch", proves, self.rests(proves, on), witness, {"lower": downward(lower)})
 
     def product(self, points: Sequence[dict[str, Fraction]], power: int, bits: int, on: int, wanted: Fraction) -> None:
         """Jacobians whose product shows a gain of `wanted` or more in any norm: no line where it shows less."""

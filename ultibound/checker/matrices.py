@@ -18,7 +18,7 @@ Matrix = tuple[tuple[Fraction, ...], ...]
 Whole = list[list[int]]
 
 KINDS = ("box", "polytope", "ellipsoid")
-LEAST_STATES, MOST_STATES = 2, 6
+MOST_STATES = 6
 MOST_ROWS = 64
 MOST_SLOPES = 8  # whose signs are told apart; further ones count as rest
 LONGEST = 4000  # bits of a matrix's whole numbers, and of the denominator they share
@@ -74,8 +74,8 @@ def metric(kind: str, rows: Matrix, inverse: Matrix, states: int) -> Metric:
     """The norm of so many states, its matrices checked: proofs/matrix.md (1). Raises Rejected."""
     if kind not in KINDS:
         raise Rejected(f"metric: the kind is one of {', '.join(KINDS)}")
-    if not LEAST_STATES <= states <= MOST_STATES:
-        raise Rejected(f"metric: {LEAST_STATES} to {MOST_STATES} states")
+    if not 1 <= states <= MOST_STATES:
+        raise Rejected(f"metric: 1 to {MOST_STATES} states")
     m = len(rows)
     if not 0 < m <= MOST_ROWS:
         raise Rejected(f"metric: 1 to {MOST_ROWS} rows")
@@ -239,7 +239,7 @@ def seen(metric: Metric, leaf: Leaf) -> Image:
     columns = len(leaf.centre[0]) if leaf.centre else 0
     if columns not in (1, len(metric.inverse)):
         raise Rejected("matrix: a vector or a square matrix is bounded")
-    return image(metric.rows, metric.inverse if columns > 1 else None, leaf)
+    return image(metric.rows, metric.inverse if columns == len(metric.inverse) else None, leaf)
 
 
 def image(rows: Matrix, inverse: Matrix | None, leaf: Leaf) -> Image:

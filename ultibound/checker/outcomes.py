@@ -275,8 +275,3 @@ class SeveralResults(Results):
             columns = tuple(zip(*rows, strict=True))
             rows = tuple(tuple(dot(a, b) for b in columns) for a in columns)
         return {"kind": self.metric.kind, "matrix": [[str(x) for x in row] for row in rows]}
-
-
-def results_of(proof: Proof) -> Results:
-    """What a proof amounts to, of one state or of several."""
-    return SeveralResults(proof) if len(proof.derivation.states) > 1 else Results(proof)

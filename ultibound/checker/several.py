@@ -28,9 +28,9 @@ def stated(d: Derivation, proves: str, used: list[Line], witness: dict[str, Any]
         raise Rejected("a metric rests on no other line")
     n, asked = len(d.states), d.statement.metric
     found = metric(str(witness["kind"]), matrix(witness["rows"], "rows"), matrix(witness["inverse"], "inverse"), n)
-    if asked not in ("auto", found.kind):
+    if asked not in ("auto", found.kind) and n > 1:
         raise Rejected(f"kind: the claim asks for {asked}")
-    if asked == "box" or d.statement.weights:
+    if asked == "box" or d.statement.weights or n == 1:
         for i, s in enumerate(d.states):
             low, high = constant(d.statement.weights[s], d.statement.values) if s in d.statement.weights else (1, 1)
             if found.kind != "box" or not low == found.rows[i][i] == high:
@@ -147,23 +147,34 @@ def bounded(
     """Rules matrix and entries: what holds at every leaf. Returns the set, the leaves and the basis (or None)."""
     used, flows = parted(used)
     domain, norm = of_set(used)
-    table = Table(d, proves, domain, witness["bits"], flows)
+    leaves = gone_through(d, Table(d, proves, domain, witness["bits"], flows), proves, flows, witness)
     if rule == "matrix":
-        count = 0
-        for leaf in gone_through(d, table, proves, flows, witness):
-            count += 1
-            if not norm_at_most(norm, leaf, claimed["norm"]):
-                raise Rejected(f"{proves}: a leaf is not shown to stay within the norm")
-        return domain, count, None
+        return domain, shown(norm, leaves, proves, claimed), None
     basis = based(d, witness)
-    z = apart(basis, proves, witness["beside"])
-    low, high, count = hull(gone_through(d, table, proves, flows, witness), basis, proves, z)
+    return domain, entered(leaves, basis, proves, claimed, apart(basis, proves, witness["beside"])), basis
+
+
+def shown(norm: Metric, leaves: Iterable[Leaf], proves: str, claimed: Quantities) -> int:
+    """How many leaves there are, every one within the norm that is claimed."""
+    count = 0
+    for leaf in leaves:
+        count += 1
+        if not norm_at_most(norm, leaf, claimed["norm"]):
+            raise Rejected(f"{proves}: a leaf is not shown to stay within the norm")
+    return count
+
+
+def entered(
+    leaves: Iterable[Leaf], basis: tuple[Matrix, Matrix], proves: str, claimed: Quantities, beside: Matrix = ()
+) -> int:
+    """How many leaves there are, every one within the entries that are claimed."""
+    low, high, count = hull(leaves, basis, proves, beside)
     if set(claimed) != set(keyed(low, high)):
         raise Rejected(f"{proves}: two conclusions an entry")
     for key, x in keyed(low, high).items():
         if not (claimed[key] <= x if key.startswith("-") else claimed[key] >= x):
             raise Rejected(f"{proves}: entry {key} is less than what the leaves show")
-    return domain, count, basis
+    return count
 
 
 def gone_through(
@@ -246,15 +257,21 @@ def stretched(d: Derivation, proves: str, used: list[Line], witness: dict[str, A
     """Rule stretch: a direction that a Jacobian stretches by no less, or a miss no shorter (several.md (4))."""
     used, flows = parted(used)
     domain, norm = of_set(used)
-    table = Table(d, proves, domain, witness["bits"], flows)
+    stretch(Table(d, proves, domain, witness["bits"], flows), norm, norm, proves, witness, claimed)
+    return domain
+
+
+def stretch(
+    table: Table, before: Metric, after: Metric, proves: str, witness: dict[str, Any], claimed: Quantities
+) -> None:
+    """A direction in one norm, and how long its image surely is in the other."""
     middle, half = middle_and_half(table.at(witness["at"]))
     direction = numbers(witness["direction"], "direction", len(middle[0]))
     image = [sum((x * y for x, y in zip(row, direction, strict=True)), Fraction(0)) for row in middle]
     off = [sum((x * abs(y) for x, y in zip(row, direction, strict=True)), Fraction(0)) for row in half]
-    size = norm.most(direction) if proves.startswith("slopes") else abs(direction[0])
-    if not size > 0 or not claimed["lower"] * size <= norm.least(image) - norm.length(off):
+    size = before.most(direction) if proves.startswith("slopes") else abs(direction[0])
+    if not size > 0 or not claimed["lower"] * size <= after.least(image) - after.length(off):
         raise Rejected(f"{proves}: the direction is not shown to be stretched by so much")
-    return domain
 
 
 def movements(d: Derivation) -> list[tuple[str, str]]:

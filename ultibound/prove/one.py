@@ -18,7 +18,7 @@ from ..certificate.results import assembled
 from ..checker.derive import Derivation
 from ..checker.derive import varied as statement_varied
 from ..checker.flows import Flows
-from ..checker.outcomes import results_of
+from ..checker.graph_outcomes import results_of
 from ..checker.reals import Undefined
 from ..checker.rules import Rejected
 from ..checker.theorems import levels, movement, sharpest
@@ -446,7 +446,7 @@ class Attempt:
 
     def _target_inside(self, s: str, region: tuple[Fraction, Fraction]) -> None:
         for n, line in self.writer.proof.lines.items():
-            met = (line.rule, line.proves) == ("point", f"target[{s}]")
+            met = (line.part, line.rule, line.proves) == (self.writer.part, "point", f"target[{s}]")
             if met and (line.concludes["lower"] > region[1] or line.concludes["upper"] < region[0]):
                 at = self.writer.raw[n - 1]["witness"]["at"]
                 where = ", ".join(f"{k} = {float(Fraction(v)):.6g}" for k, v in at.items() if not v.startswith("#"))

@@ -57,6 +57,7 @@ class SeveralAttempt(Attempt):
     norm: Metric
     domain: Domain
     needed = 0  # leaves that showed the ball to be kept
+    shrunk = False  # whether the ball is smaller than the largest in the region
 
     def _prove(self) -> None:
         """Lines for the set and its metric, gain and residual, bounds by state, and the requirements."""
@@ -68,7 +69,7 @@ class SeveralAttempt(Attempt):
         self._settled(images)
         number = w.metric(self.chosen.kind, self.chosen.rows, self.chosen.inverse)
         lines = [t.line for t in self.targets]
-        ball = w.about(number, lines, self.domain.radius)
+        ball = w.about(number, lines, self.domain.radius, not self.shrunk)
         found = w.proof.lines[ball].domain
         on = ball
         if images is not None:
@@ -165,7 +166,7 @@ class SeveralAttempt(Attempt):
         for share in SHARES:
             smaller = self._within(self.norm, Fraction(f"{to_float(self.domain.radius) * share:.4g}"))
             if self._size(self.chosen, smaller) < np.inf:
-                self.domain = smaller
+                self.domain, self.shrunk = smaller, True
                 return
 
     def _proposed(self, domain: Domain) -> list[Proposal]:
@@ -214,7 +215,7 @@ class SeveralAttempt(Attempt):
         """The entries of a matrix over a set, ready to run."""
         o = self.obligations
         kind, _, after = proves.partition("@")
-        rows = [[o.miss(s, int(after or 0))] for s in o.states]
+        rows = [[self._miss(s, int(after or 0))] for s in o.states]
         if kind == "slopes":
             rows = [[o.slope(domain, s, x, int(after or 0)) for x in o.states] for s in o.states]
         ready = [[(x, self.ranges.runner(x, False)) for x in row] for row in rows]
@@ -222,6 +223,14 @@ class SeveralAttempt(Attempt):
             return Matrices(ready)
         names = [v.name for v in Matrices(ready).variables]
         return Matrices(ready, lambda x: self._into(x, names, domain, norm))
+
+    def _miss(self, s: str, steps: int = 0) -> Obligation:
+        return self.obligations.miss(s, steps)
+
+    def _form(self, proves: str, norm: Metric) -> Norm:
+        """The norm in which a matrix is seen."""
+        inverse = floats(norm.inverse) if proves.startswith("slopes") else None
+        return Norm(floats(norm.rows), inverse, norm.kind == "ellipsoid")
 
     def _into(self, x: Floats, names: list[str], domain: Domain, norm: Metric) -> Floats:
         """Points moved towards the target until they lie in the ball."""
@@ -253,10 +262,7 @@ class SeveralAttempt(Attempt):
         def watch(leaves: int, high: float) -> None:
             self.watch(f"{proves} of {len(self.obligations.states)} states", leaves, high)
 
-        matrices = self.matrices(proves, domain, norm)
-        form = Norm(
-            floats(norm.rows), floats(norm.inverse) if proves.startswith("slopes") else None, norm.kind == "ellipsoid"
-        )
+        matrices, form = self.matrices(proves, domain, norm), self._form(proves, norm)
         effort = Effort(gap, cells, self.ranges.until - self.ranges.spent, watch, later=later)
         try:
             return stretched(matrices, form, effort, enough)
