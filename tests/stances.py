@@ -59,5 +59,20 @@ PARTS = {
     "read at a state": stance(
         rates=PUSHING + '"', define=HEIGHT, rest="[constants]\ng = 9.81\n" + LIBRARY.replace('"v_cmd"', '"0.2 + 0.5*v**2"')
     ),
+    "gusty at a state": stance(
+        rates=PUSHING + ' + gust"', define=HEIGHT, top='correction = ["shift"]',
+        rest="[constants]\ng = 9.81\n" + LIBRARY.replace('"v_cmd"', '"0.2 + 0.5*v**2"'),
+        uncertain="T = [0.38, 0.42]\nloss = [0, 0.05]\nv_cmd = { range = [0.2, 0.8], held = true }\ngust = { range = [-0.1, 0.2], within = true }",
+    ),
+    "two signals on one": stance(
+        rates='y = "-(2 + v)*y + (1 + t*v)*gust + slip/2"', start='y = "v - foot"', step="0.4*v*y + v_cmd",
+        uncertain="T = [0.38, 0.42]\nv_cmd = { range = [0.2, 0.8], held = true }\ngust = { range = [-0.1, 0.1], within = true }\n"
+        "slip = { range = [0, 0.1], within = true }",
+    ),
+    "gusty at both": stance(
+        rates='x = "xd + slip"\nxd = "(9 + v)*x + gust"', step="xd + x/3",
+        uncertain="T = [0.38, 0.42]\nloss = [0, 0.05]\nv_cmd = { range = [0.2, 0.8], held = true }\n"
+        "gust = { range = [-0.1, 0.1], within = true }\nslip = { range = [0, 0.01], within = true }",
+    ),
     "scaled": stance(duration="1.1*T", rates='x = "xd"\nxd = "9.81/(0.6 + 0.05*t/T)*x"'),
 }  # fmt: skip

@@ -2,12 +2,14 @@
 
 from __future__ import annotations
 
+from fractions import Fraction
+
 import pytest
 
 from tests.conftest import proved
 from tests.stances import stance
 from ultibound.checker.calculus import Unprovable
-from ultibound.checker.derive import Derivation, Domain, Fraction
+from ultibound.checker.derive import Derivation, Domain
 from ultibound.checker.statement import read_statement
 from ultibound.claim import ClaimError
 
@@ -51,12 +53,39 @@ def test_sensitivities_by_what_a_signals_effect_follows() -> None:
 
 
 def test_a_gain_where_a_signals_effect_follows_the_state() -> None:
-    """The pair holds, so settling is proved; the slope over all courses of the signal is larger than its k."""
+    """Signals of one time end at another instant of a longer stance: u = −0.4 until just before touchdown, then 0.4.
+
+    The pair holds, so settling is proved; the slope over all courses of the signal is larger than its k.
+    """
     text = stance(rates='y = "-2*y + gust"', start="y = 0", define="", step="v_cmd + 0.5*y", duration="0.5 + 0.2*v", state="[0, 1]",
                   uncertain=SWING.replace("[-1, 1]", "[-0.4, 0.4]"), requires=("gain <= 0.05", "settles"))  # fmt: skip
     results = proved(text).entries["results"]
     assert [r["verdict"] for r in results["requirements"]] == ["undecided", "proved"]
     assert results["gain"]["upper"] is None and results["requirements"][0]["value"]["upper"] is None
+    assert "the duration follows the state" in results["requirements"][0]["limited_by"]
+
+
+@pytest.mark.parametrize("rates, start, step, reason", [
+    ('x = "xd"\nxd = "(9 + v)*x - xd/4 + gust"', 'x = 0\nxd = "v"', "0.3*v + 0.7*v_cmd + xd/9", "without damping"),
+    ('y = "-(1 + v)*y + z + gust"\nz = "-z"\ny2 = "-y2"', 'y = 0\nz = 0\ny2 = 0', "v_cmd + 0.3*y", "without damping"),
+    ('y = "-(1 + v)*y + gust"', "y = 0", "v_cmd + 0.1*y**2", "not linear in the continuous states"),
+    ('y = "-(1 + v)*y + gust"', "y = 0", "v_cmd + 0.1*abs(y)", "not linear in the continuous states"),
+])  # fmt: skip
+def test_what_no_gain_is_known_of(rates: str, start: str, step: str, reason: str) -> None:
+    text = stance(rates=rates, start=start, define="", step=step, state="[0, 1]",
+                  uncertain=SWING.replace("[-1, 1]", "[-0.4, 0.4]") + "T = [0.3, 0.31]", requires=("gain <= 0.9", "settles"))  # fmt: skip
+    asked = proved(text).entries["results"]["requirements"]
+    assert [r["verdict"] for r in asked] == ["undecided", "proved"] and reason in asked[0]["limited_by"], asked
+
+
+def test_a_gain_that_only_constant_signals_have() -> None:
+    """y' = (1 + v(t − 1/2)) u over a second, |u| ≤ 1/10: constant signals add nothing to 3/10, sign(t − 1/2) a fortieth."""
+    text = stance(rates='y = "gust*(1 + v*(t - 0.5))"', start='y = "0.3*v"', duration="1", define="", state="[-0.5, 0.5]", step="y", target="0",
+                  uncertain="gust = { range = [-0.1, 0.1], within = true }", requires=("gain <= 0.32", "gain < 0.325", "gain <= 0.34"))  # fmt: skip
+    results = proved(text).entries["results"]
+    least, most = (float(Fraction(results["gain"][end])) for end in ("lower", "upper"))
+    assert 0.2999 <= least <= 0.3001 and 0.3375 <= most <= 0.339  # an eighth of what signals add is lost to four parts
+    assert [r["verdict"] for r in results["requirements"]] == ["undecided", "undecided", "proved"]
 
 
 @pytest.mark.parametrize("rate", ["dt(dt(dt(x)))", "dt(gust*t)", "dt(gust)"])

@@ -457,3 +457,84 @@ def test_one_gait_that_pulls_spoils_its_cells(commands: tuple[float, float], pul
     results = proved(walk.text(), data=walk.data).results
     assert (results["set"] is None) is pulls
     assert {e["verdict"] for e in results["requirements"]} == ({"undecided"} if pulls else {"proved"})
+
+
+def blown(rng: random.Random) -> Walk:
+    """Gusts against trays whose height profile follows the speed: what a gust does follows the state."""
+    gust = {"gust": Quantity(round(rng.uniform(-0.6, -0.2), 2), 0.5, within=True)}
+    found = library(rng, ["-0.4", "0.2", "0.7", "1.2"], ["0.36", "0.44"], "v", 0.03) | {"correction": ""}
+    return pendulum(rng, **found, period=Quantity(0.38, 0.39), uncertain=gust, added=" + gust")
+
+
+def fading(rng: random.Random) -> Walk:
+    """One continuous state, and a signal that the state weighs: more early in the stance, less late, or the other way."""
+    gust = Quantity(-0.2, 0.3, within=True)
+    rate = f"(1.5 + {num(rng.uniform(1, 3))}*v*(t - 0.2))*gust"
+    uncertain = {"T": Quantity(0.4, 0.41), "v_cmd": HELD, "gust": gust}
+    return Walk((-0.3, 1.1), uncertain, {}, {"y": "0.2*v"}, {"y": rate}, "T", "0.8*v_cmd + y", "v_cmd")
+
+
+def swayed(rng: random.Random) -> Walk:
+    """Two continuous states that signals move, and both of which the next state rests on."""
+    define = {"foot": "0.16*v + 0.1*(v - v_cmd)"}
+    rate = {"x": f"xd + {num(rng.uniform(0, 0.1))}*gust", "xd": f"(14 + {num(rng.uniform(-3, 3))}*v)*x + gust"}
+    uncertain = {"T": Quantity(0.38, 0.4), "v_cmd": HELD, "gust": Quantity(-0.3, 0.3, within=True)}
+    start = {"x": "-foot", "xd": "0.98*v"}
+    return Walk((-0.3, 1.1), uncertain, define, start, rate, "T", "xd + 0.1*v*x", "v_cmd")
+
+
+COURSES, ACROSS = 12, 1e-4  # jumps of a course that is worst, and how far two trajectories start from each other
+
+
+def worst(walk: Walk, values: Values, side: int) -> tuple[np.ndarray, dict[str, np.ndarray]]:
+    """How two trajectories under the same course come apart, by the course that makes most of it, and that course.
+
+    The map is affine in what a signal is between its jumps; a course is at one end where its share is positive.
+    """
+    phases, other = [k / COURSES for k in range(1, COURSES)], {**values, "v": values["v"] + ACROSS}
+
+    def apart(courses: dict[str, np.ndarray]) -> np.ndarray:
+        return (walk.landed(other, phases, courses)[0] - walk.landed(values, phases, courses)[0]) / ACROSS
+
+    none = {d: np.zeros((COURSES, RUNS)) for d in walk.signals}
+    still, found = apart(none), dict[str, np.ndarray]()
+    for d in walk.signals:
+        q, shares = walk.uncertain[d], []
+        for k in range(COURSES):
+            one = none[d].copy()
+            one[k] = 1
+            shares.append(apart({**none, d: one}) - still)
+        found[d] = np.where(side * np.array(shares) > 0, q.high, q.low)
+    return apart(found), found
+
+
+@pytest.mark.parametrize("kind", [blown, fading, swayed])
+def test_no_course_of_signals_parts_trajectories_faster_than_the_gain(kind: Callable[[random.Random], Walk]) -> None:
+    """Signals that jump to the worse end where their effect's slope by the state changes sign."""
+    for seed in range(TIMES):
+        walk, rng = kind(random.Random(seed)), np.random.default_rng(seed)
+        walk.asked = ["settles", "gain < 1"]
+        results = proved(walk.text(), data=walk.data).results
+        assert [e["verdict"] for e in results["requirements"]] == ["proved", "proved"], results["requirements"]
+        least, k = (float(Fraction(results["gain"][end])) for end in ("lower", "upper"))
+        most, constant = 0.0, 0.0
+        for number in range(3):
+            ends = {n: rng.choice([q.low, q.high], RUNS) for n, q in walk.uncertain.items() if not q.within}
+            values = {
+                n: np.where(rng.random(RUNS) < 0.5, x, rng.uniform(x.min(), x.max(), RUNS)) for n, x in ends.items()
+            }
+            values["v"] = rng.uniform(*walk.state, RUNS) - ACROSS
+            slopes, courses = worst(walk, values, number % 2 * 2 - 1)
+            if number == 2:
+                values["v"] = rng.choice([walk.state[0], walk.state[1] - ACROSS], RUNS)
+                slopes, courses = worst(walk, values, 1)
+            assert np.all(np.abs(slopes) <= k + 1e-6), seed
+            most = max(most, float(np.max(np.abs(slopes))))
+            for end in ("low", "high"):
+                held = {d: np.full((COURSES, RUNS), getattr(walk.uncertain[d], end)) for d in walk.signals}
+                phases = [j / COURSES for j in range(1, COURSES)]
+                after = [walk.landed({**values, "v": values["v"] + e}, phases, held)[0] for e in (0, ACROSS)]
+                constant = max(constant, float(np.max(np.abs(after[1] - after[0])) / ACROSS))
+            jumps = {d: np.count_nonzero(np.diff(c, axis=0)) for d, c in courses.items()}
+            assert sum(jumps.values()) > 0 or number == 2 or kind is swayed, "no course that is not constant was tried"
+        assert constant <= k and k <= 1.15 * max(most, least), (k, most)

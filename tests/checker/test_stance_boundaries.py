@@ -1173,6 +1173,54 @@ def obligations_of_stances(checker: Any) -> None:
             meant(checker, text, name)
 
 
+# signals of any course: a phase and a value a part, brought back to the start; v in [-1/5, 6/5] throughout
+
+GUST = "d = { range = [-1, 3], within = true }"
+BOTH = "d = { range = [-1, 1], within = true }\ne = { range = [0, 1], within = true }"
+IN = "v in [-1/5,6/5] inside [-1/5,6/5]"
+COURSES: list[tuple[str, str, list[Any]]] = [
+    (moving(GUST, rates='y = "v*y + (t + v)*d"', start='y = "v"', step="y/2"), "signal-slope[1]",
+     ["(((flow[11](1,mark[v](v))*(mark[v](v)+((1*d(1))*(((1*phase(d, 1))+mark[v](v))/flow[11](((2*phase(d,1))-1),mark[v](v))))))+(flow[12](1,mark[v](v))*1))/2)", "v", True, "d(1) in [-2,2] inside [-2,2]", "phase(d, 1) in [0,1] inside [0,1]", IN]),
+    (moving(GUST, rates='y = "v*y + 2*d"', start='y = "v"', step="t*y", duration="2"), "signal-slope[2]",
+     ["(2*((flow[11](1,mark[v](v))*((mark[v](v)+((1*d(1))*(2/flow[11](((2*phase(d,1))-1),mark[v](v)))))+((1*d(2))*(2/flow[11](((2*phase(d,2))-1),mark[v](v))))))+(flow[12](1,mark[v](v))*1)))", "v", True, "d(1) in [-2,2] inside [-2,2]", "d(2) in [-2,2] inside [-2,2]", "phase(d, 1) in [0,1/2] inside [0,1/2]", "phase(d, 2) in [1/2,1] inside [1/2,1]", IN]),
+    (moving(BOTH, rates='x = "xd + e"\nxd = "v*x + 3*d + 1"', step="xd"), "signal-slope[1]",
+     ["((((flow[21](1,mark[v](v))*((0+((1*d(1))*neg((flow[12](((2*phase(d,1))-1),mark[v](v))*3))))+((1*e(1))*(flow[22](((2*phase(e,1))-1),mark[v](v))*1))))+(flow[22](1,mark[v](v))*((mark[v](v)+((1*d(1))*(flow[11](((2*phase(d,1))-1),mark[v](v))*3)))+((1*e(1))*neg((flow[21](((2*phase(e,1))-1),mark[v](v))*1))))))+(flow[20](1,mark[v](v))*1))+(flow[24](1,mark[v](v))*1/2))", "v", True, "d(1) in [-1,1] inside [-1,1]", "e(1) in [-1/2,1/2] inside [-1/2,1/2]", "phase(d, 1) in [0,1] inside [0,1]", "phase(e, 1) in [0,1] inside [0,1]", IN]),
+    (moving(GUST, rates='x = "xd + d"\nxd = "v*x + 2*d"', step="x"), "signal-slope[1]",
+     ["(((flow[11](1,mark[v](v))*(0+((1*d(1))*((flow[22](((2*phase(d,1))-1),mark[v](v))*1)-(flow[12](((2*phase(d,1))-1),mark[v](v))*2)))))+(flow[12](1,mark[v](v))*(mark[v](v)+((1*d(1))*((flow[11](((2*phase(d,1))-1),mark[v](v))*2)-(flow[21](((2*phase(d,1))-1),mark[v](v))*1))))))+(flow[13](1,mark[v](v))*1))", "v", True, "d(1) in [-2,2] inside [-2,2]", "phase(d, 1) in [0,1] inside [0,1]", IN]),
+    (moving(GUST, rates='x = "xd"\nxd = "v*x + d"', step="v/2"), "signal-slope[99]", ["(mark[v](v)/2)", "v", True, IN]),
+    (moving(GUST, rates='y = "v*y + d"', start='y = "v - s"', define='s = "v/3"', step="y*(2 + s)", top='correction = ["s"]'), "split-signal-slope[1]",
+     ["(mark[v](v)+((0+(((flow[11](1,mark[v](v))*((mark[v](v)-(mark[v](v)/3))+((1*d(1))*(1/flow[11](((2*phase(d,1))-1),mark[v](v))))))+(flow[12](1,mark[v](v))*1))*(2+(mark[v](v)/3))))-(((flow[11](1,mark[v](v))*((mark[v](v)-0)+((1*d(1))*(1/flow[11](((2*phase(d,1))-1),mark[v](v))))))+(flow[12](1,mark[v](v))*1))*2)))", "v", True, "d(1) in [-2,2] inside [-2,2]", "phase(d, 1) in [0,1] inside [0,1]", IN]),
+]
+NO_COURSE: list[tuple[str, str, str]] = [
+    (moving(GUST, rates='x = "v*xd"\nxd = "x + d - xd"'), "signal-slope[1]", "for two continuous states without damping"),
+    (moving(GUST, rates='x = "v*xd + x"\nxd = "x + d"'), "signal-slope[1]", "for two continuous states without damping"),
+    (moving(GUST, rates='x = "v*xd"\nxd = "x + d"\ny = "x"', start='x = 0\nxd = "v"\ny = 0'), "signal-slope[1]", "for two continuous states without damping"),
+    (moving(GUST, rates='x = "v*xd"\nxd = "x + d"', duration="2 + v"), "signal-slope[1]", "the duration follows the state, so a signal ends at another instant"),
+    (moving(GUST, rates='x = "v*xd"\nxd = "x + d"', step="x*xd"), "signal-slope[1]", "the next state is not linear in the continuous states"),
+    (moving(GUST, rates='x = "v*xd"\nxd = "x + d"', step="xd**2"), "signal-slope[1]", "the next state is not linear in the continuous states"),
+    (moving(GUST, rates='x = "v*xd"\nxd = "x + d"', step="max(xd, 0)"), "signal-slope[1]", "a time rate through max"),
+    *((moving(GUST), name, f"{name} is no obligation of this claim") for name in ("signal-slope[0]", "signal-slope[100]", "signal-slope[01]", "signal-slope", "split-signal-slope[1]", "slope-signal[1]")),
+    (moving(), "signal-slope[1]", "signal-slope[1] is no obligation of this claim"),
+    ('format = 1\n[state]\nv = [0, 1]\n[next]\nv = "v/2"\n[target]\nv = 0\n', "signal-slope[1]", "signal-slope[1] is no obligation"),
+]
+
+
+@unit
+def signals_of_any_course(checker: Any) -> None:
+    for text, name, expected in COURSES:
+        found = meant(checker, text, name)
+        assert found == expected, (text, name, found)
+    for text, name, reason in NO_COURSE:
+        with refuses(checker.calculus.Unprovable, reason):
+            meant(checker, text, name)
+    two = moving(GUST, rates='x = "v*xd"\nxd = "x + d"', step="xd*(1 + s)", define='s = "v/3"', top='correction = ["s"]')
+    for text, routes in ((two, [True, True]), (two.replace("xd*(1 + s)", "xd + s"), [True, False]), (two.replace("v*xd", "xd"), [False, False]),
+                         (two.replace("v*xd", "xd").replace("xd*(1 + s)", "xd"), [False, False])):  # fmt: skip
+        d = derivation(checker, text)
+        assert [d.loose(route) for route in ("slope", "split")] == routes, text
+    assert derivation(checker, two).loose()
+
+
 TOGETHER = "a = [1, 2]\nd = { range = [0, 1], within = true }"
 
 
@@ -1369,8 +1417,75 @@ def stances_that_are_off() -> None:
         reject(f"a flow that is off: line {number} {key}", but(entries, f"proof {number - 1} concludes {key}", changed), f"proof line {number}", reason)
 
 
+# y' = (2 + v) d over a second from v/2 + w: slopes 1/2 + d, and of signals of any course no more; a unit off each
+
+STIRRED = {"rates": 'y = "(2 + v)*d"', "uncertain": 'w = ["-1/4", "1/4"]\nd = { range = ["-1/32", "1/16"], within = true }'}
+RISING = {"cuts": {"v": ["-1", "1"]}, "pieces": ["0", "1"], "degrees": [1, 1], "bits": 24, "cells": [["16777216 0 0 0 16777216 16777216 8388608 8388608"]]}
+LEAST, MOST = Q(15, 32) - Q(1, 1 << 24), Q(9, 16) + Q(1, 1 << 24)
+
+
+def stirred(asked: Sequence[str], *courses: tuple[str, str, str, int], **claim: str) -> Draft:
+    """Lines: as `stood`, but for 7 support, and no growth; then signal-slope lines: name, ends, and the set."""
+    d = Draft(stance(**{**STOOD, **STIRRED, **claim}, requires=tuple(asked)))
+    d.line("trajectory", "flow", [], RISING, error=str(Q(11, 1 << 72)))
+    d.range("target[v]", "0", "0")
+    d.theorem("smaller-ball", "ball", [2], radius="1")
+    d.range("image[v]", str(-Q(25, 32) - Q(1, 1 << 24)), str(Q(15, 16) + Q(1, 1 << 24)), [1], ["m"], bits=24)
+    d.theorem("invariant-region", "invariant", [2, 4])
+    d.range("support[1]", "1", "1", [5])
+    d.range("support[2]", "1", "3", [5])
+    d.range("slope[v,v]", str(LEAST), str(MOST), [5, 1], bits=24)
+    d.range("target-miss[v]", str(-Q(5, 16) - Q(1, 1 << 24)), str(Q(3, 8) + Q(1, 1 << 24)), [1], bits=24)
+    d.theorem("slope", "slope", [8, 9], gain=str(MOST), residual=str(Q(3, 8) + Q(1, 1 << 24)))
+    for name, low, high, on in courses:
+        d.range(name, low, high, [on, 1], bits=24)
+    return d
+
+
+def signals_at_equality() -> None:
+    idle = "serves no later line and no result"
+    asked = [(f"gain <= {MOST}", "proved"), (f"gain < {MOST}", "undecided"), (f"gain < {MOST} + 1{STEP}", "proved")]
+    names = [that for that, _ in asked]
+    unknown = [(that, "undecided") for that in names]
+    for name in ("signal-slope[1]", "signal-slope[2]"):
+        entries = stirred(names, (name, str(LEAST), str(MOST), 5)).entries("region", asked)
+        accept(f"{name} at equality", entries)
+        known = but(entries, "results gain", {"lower": None, "upper": str(MOST)})
+        accept(f"{name} at equality, the gain", known)
+        reject(f"{name} at equality, less", but(known, "results gain upper", str(MOST - Q("1" + STEP))), "results", "results.gain.upper: more is claimed")
+        reject(f"{name} at equality, refuted", but(entries, "results requirements 1 verdict", "refuted"), "results", "[2].verdict: refuted is claimed")
+        for key, end in (("lower", LEAST + Q("1" + STEP)), ("upper", MOST - Q("1" + STEP))):
+            reject(f"{name} {key}", but(entries, f"proof 10 concludes {key}", str(end)), "proof line 11", f"{name}: the range shown is wider")
+    none = stirred(names).entries("region", unknown)
+    accept("signals without a slope of any course", none)
+    reject("signals without a slope of any course, proved", but(none, "results requirements 0 verdict", "proved"), "results", "[1].verdict: proved is claimed")
+    reject("signals without a slope of any course, the gain", but(none, "results gain", {"lower": None, "upper": str(MOST)}), "results", "results.gain.upper: nothing was derived")
+    # of several the least counts; the magnitude of either end
+    wide, close = ("signal-slope[1]", "0", "5/8", 5), ("signal-slope[2]", str(LEAST), str(MOST), 5)
+    for n, courses in enumerate(((wide, close), (close, wide)), 1):
+        reject(f"signals: a wider slope serves nothing, {n}", stirred(names, *courses).entries("region", asked), "proof", f"line {10 + n} {idle}")
+    accept("signals: a wider slope alone", stirred([f"gain < 5/8 + 1{STEP}"], wide).entries("region", [(f"gain < 5/8 + 1{STEP}", "proved")]))
+    below = stirred(["gain <= 0.75", "gain < 0.75"], ("signal-slope[1]", "-3/4", str(MOST), 5)).entries("region", [("gain <= 0.75", "proved"), ("gain < 0.75", "undecided")])
+    accept("signals: a slope that may be far below", below)
+    reject("signals: a slope that may be far below, proved", but(below, "results requirements 1 verdict", "proved"), "results", "[2].verdict: proved is claimed")
+    # another set, another route, a point: nothing follows
+    reject("signals over another set", stirred(names, ("signal-slope[1]", str(LEAST), str(MOST), 3)).entries("region", unknown), "proof", idle)
+    entries = stirred(names, ("signal-slope[1]", str(LEAST), str(MOST), 5)).entries("region", asked)
+    reject("signals without a set", but(entries, "proof 10 uses", [1]), "proof line 11", "needs a line that gives its set")
+    reject("signals without a flow", but(entries, "proof 10 uses", [5]), "proof line 11", "no trajectory is proved")
+    reject("signals of a route that is not there", but(entries, "proof 10 proves", "split-signal-slope[1]"), "proof line 11", "split-signal-slope[1] is no obligation")
+    reject("signals whose slope is the pair's", but(entries, "proof 10 proves", "slope[v,v]"), "results", "[1].verdict: proved is claimed, undecided was derived")
+    at = {"v": "1", "w": "0", "d(1)": "0", "phase(d, 1)": "0"}
+    d = stirred(names, ("signal-slope[1]", str(LEAST), str(MOST), 5))
+    d.point("signal-slope[1]", at, "1/2", "5/8", [5, 1], bits=24)
+    reject("signals: a point", d.entries("region", asked), "proof", idle)
+    for route in ("slope", "best", "curve"):  # the least of all routes is that of slope; a curve's slope is no gain
+        entries = stirred(names, ("signal-slope[1]", str(LEAST), str(MOST), 5), top=f'route = "{route}"\n').entries("region", asked)
+        accept(f"signals, asked for {route}", but(entries, "results route", route if route != "best" else "slope"))
+
 stances_at_equality()
 stances_that_are_off()
+signals_at_equality()
 
 
 @pytest.mark.parametrize("name", CASES)

@@ -60,7 +60,8 @@ class Remarks:
         pursue = False
         if outcome.verdict == "undecided":
             ranged = r.kind in RANGED
-            names = [f"require[{number}]"] if ranged else [n for n in self.search.limits if not n.startswith("require")]
+            aside = ("require",) if r.kind == "gain" else ("require", "signal-slope", "split-signal-slope")
+            names = [f"require[{number}]"] if ranged else [n for n in self.search.limits if not n.startswith(aside)]
             parts += [f"{n}: {STOPS.get(x, x)}" for n in names if (x := self.search.limits.get(n, ""))]
             if self.search.interrupted:
                 parts.append("interrupted")
@@ -78,7 +79,7 @@ class Remarks:
             elif r.kind == "settles":
                 why = "gain is not below 1" if results.bound is None else "bound is not below the radius of the set"
                 parts.append(f"the {why}" + self.size_that_would_do)
-            elif r.kind == "gain" and results.derivation.loose():
+            elif r.kind == "gain" and (outcome.value is None or outcome.value.upper is None):
                 parts.append("the effect of a signal within the stance follows the state: k is that of the pair alone")
             elif self.beyond(number):
                 untried = "the sector route is not tried yet" if r.kind == "gain" else "no orbit that far out was found"

@@ -67,8 +67,6 @@ class SeveralRemarks:
             return f"no set that is mapped into itself was found{size}"
         if not found.whole and r.kind not in ("radius", "steps"):
             return "only a smaller ball than the largest in the region is kept; with `shrink = true` it would count"
-        if r.kind == "sharp_bound":
-            return "the curve route, which has the sharp bound, is known for a single state only"
         if r.kind == "settles":
             return "the bound is not below the radius of the set"
         if r.kind == "steps":

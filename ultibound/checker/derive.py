@@ -5,6 +5,7 @@ from __future__ import annotations
 import re
 from dataclasses import dataclass, replace
 from fractions import Fraction
+from functools import partial
 from itertools import pairwise
 from math import prod
 from typing import Any
@@ -17,6 +18,7 @@ from .model import Quantity, Range, Requirement, Statement
 from .motion import PHASE, Motion, copy, grown, landed, motion, supported
 from .names import Names, mentioned
 from .ranges import Ends
+from .signals import excess, followed, instant
 from .terms import Terms
 
 MOST_CELLS = 1_000_000
@@ -58,6 +60,7 @@ class Domain:
     beyond: Fraction = Fraction(0)
     targets: tuple[Ends, ...] = ()
     metric: Metric | None = None
+    of: Domain | None = None  # of a box that trajectories end up in: the set they start in
 
     @property
     def outer(self) -> Fraction:
@@ -110,6 +113,7 @@ class Derivation:
         if not several and any(set(constant(w, statement.values)) != {Fraction(1)} for w in statement.weights.values()):
             raise Unprovable("only the weight 1 can be checked for a single state")
         self.statement, self.stance, self.terms = statement, stance, Terms()
+        self.onto = statement  # whose targets a step leads to (graph.py)
         self.states = tuple(stance.states)
         self.state = self.states[0]  # of a claim of one state, that one
         self.motion: Motion | None = None
@@ -120,8 +124,10 @@ class Derivation:
         self.leaves: dict[str, Any] = {}  # of the last tree gone through, by what it proves (several.py)
         self.fixed = {s for s in self.states if not self.terms.variables(self.names().of(f"target({s})"))}
 
-    def names(self, bound: dict[str, int] | None = None, cut: str = "") -> Names:
-        return Names(self.terms, self.statement, bound or {}, cut, self.landed)
+    def names(self, bound: dict[str, int] | None = None, cut: str = "", parts: int = 0) -> Names:
+        """`parts`: into how many a stance is cut for signals that may take any course; 0: they are constants."""
+        landing = partial(self.followed, parts=parts) if parts else self.landed
+        return Names(self.terms, self.statement, bound or {}, cut, landing)
 
     def steps(self, text: str | None) -> int:
         """How many steps are taken together: those of the claim, or fewer, @1, @2, … on the way (horizon.md)."""
@@ -131,9 +137,9 @@ class Derivation:
             raise Unprovable(f"{text}: steps on the way are counted from 1 to the horizon, and below it")
         return int(text[1:])
 
-    def after(self, steps: int, bound: dict[str, int], s: str, cut: str = "") -> int:
+    def after(self, steps: int, bound: dict[str, int], s: str, cut: str = "", parts: int = 0) -> int:
         """A state after so many steps, less what the target has moved until the last: proofs/horizon.md (1)."""
-        names = self.names(bound, cut)
+        names = self.names(bound, cut, parts)
         for j in range(2, steps + 1):
             names = self.names({**bound, **onward(names, self.states, j, self.stays)})
         root, target = names.of(f"next({s})"), f"target({s})"
@@ -155,6 +161,11 @@ class Derivation:
     def landed(self, names: Names, root: int, phase: int | None = None) -> int:
         return root if self.motion is None else landed(names, self.motion, root, phase)
 
+    def followed(self, names: Names, root: int, parts: int) -> int:
+        if self.motion is None:
+            return root
+        return followed(names, self.motion, root, parts, {d: self.middle(d) for d in self.motion.signals})
+
     def meaning(self, name: str, domain: Domain | None) -> Meaning:
         """The obligation of that name; the set is needed where the state runs through it."""
         found = re.fullmatch(r"(target|image|target-miss|target-slope|slope)(@[^\[]+)?\[([^,]+)(?:,([^,]+))?\]", name)
@@ -168,7 +179,8 @@ class Derivation:
             return self.over(self.names().of(f"next({s})"))
         if by is None and kind == "target-miss":
             targets = {x: self.names().of(f"target({x})") for x in self.states}
-            return self.over(self.terms.difference(self.after(steps, targets, s), targets[s]))
+            aim = Names(self.terms, self.onto, {}, "").of(f"target({s})")
+            return self.over(self.terms.difference(self.after(steps, targets, s), aim))
         if kind == "target-slope" and by in self.moving(s):
             held = {h: self.statement.uncertain[h] for h in self.moving(s)}
             given = {h: (self.occurs(q), self.surely(q)) for h, q in held.items()}
@@ -196,6 +208,14 @@ class Derivation:
         s = self.state
         if name in (f"split-slope[{s},{s}]", f"split-residual[{s}]") and self.statement.correction:
             return self.split(domain, name.startswith("split-slope"))
+        courses = re.fullmatch(r"(split-)?signal-slope\[([1-9][0-9]?)\]", name)
+        if (
+            courses
+            and self.motion is not None
+            and self.motion.signals
+            and (self.statement.correction or not courses[1])
+        ):
+            return self.under_any_course(domain, int(courses[2]), courses[1] is not None)
         shell = re.fullmatch(r"shell\[([1-9][0-9]{0,3})\]", name)
         if shell and int(shell[1]) <= len(domain.radii):
             return self.shell(domain, int(shell[1]))
@@ -207,18 +227,41 @@ class Derivation:
             return self.over(grown(self.names(bound), self.motion, s, phase), "", given, True)
         return None
 
-    def split(self, domain: Domain, slope: bool) -> Meaning:
+    def under_any_course(self, domain: Domain, parts: int, split: bool) -> Meaning:
+        """proofs/signals.md: the slope of F, or of x + F − N, with a phase and a value of every signal a part."""
+        if split:
+            return self.split(domain, True, parts)
+        bound, given = self.through(domain, {})
+        root = self.names(bound, self.state, parts).of(f"next({self.state})")
+        return self.over(root, self.state, {**self.courses(parts), **given}, True)
+
+    def courses(self, parts: int) -> dict[str, tuple[Ends, Ends]]:
+        """The phases of every part of a stance, and what signals may be above the middles of their ranges there."""
+        found: dict[str, tuple[Ends, Ends]] = {}
+        for d in self.motion.signals if self.motion is not None else ():
+            low, high = self.range(self.statement.uncertain[d])[0]
+            for q in range(1, parts + 1):
+                found[instant(d, q)] = ((Fraction(q - 1, parts), Fraction(q, parts)),) * 2
+                found[excess(d, q)] = ((low - self.middle(d), high - self.middle(d)),) * 2
+        return found
+
+    def middle(self, signal: str) -> Fraction:
+        low, high = self.range(self.statement.uncertain[signal])[0]
+        return (low + high) / 2
+
+    def split(self, domain: Domain, slope: bool, parts: int = 0) -> Meaning:
         """proofs/split.md: the slope of x + F − N, or N − x + F(x*) − N(x*), N without the correction."""
         s, put = self.state, self.terms.put
         bound, given = self.through(domain, {})
         without = dict.fromkeys(self.statement.correction, put("number", (), Fraction(0)))
 
         def step(bound: dict[str, int], cut: str = "") -> int:
-            return self.after(self.statement.horizon, bound, s, cut)
+            return self.after(self.statement.horizon, bound, s, cut, parts)
 
         if slope:
             change = self.terms.difference(step(bound, s), step({**bound, **without}, s))
-            return self.over(put("add", (self.names(bound, s).of(s), change)), s, given, True)
+            kept = self.names(bound, s).of(s)
+            return self.over(put("add", (kept, change)), s, {**self.courses(parts), **given}, True)
         at = {s: self.names().of(f"target({s})")}
         kept = put("sub", (step({**bound, **without}), self.names(bound).of(s)))
         shift = self.terms.difference(step(at), step({**at, **without}))
@@ -351,8 +394,11 @@ class Derivation:
                     return True
         return False
 
-    def loose(self) -> bool:
-        """Whether slopes by the state are those at constant signals only."""
+    def loose(self, route: str = "slope") -> bool:
+        """Whether slopes by the state, of what a route takes them of, are those at constant signals only."""
+        if route == "split":
+            whole = Domain(False, Fraction(0), (Fraction(0), Fraction(0)))
+            return self.stirred(self.split(whole, True).root, self.state)
         pairs = [(s, x) for s in self.states for x in self.states]
         return any(self.stirred(self.names(cut=x).of(f"next({s})"), x) for s, x in pairs)
 

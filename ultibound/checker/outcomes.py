@@ -45,7 +45,7 @@ class SeveralResults(Results):
         self.bounds = self.bounds_by_state()
         self.lift(self.within())
         route = self.routes.get("slope", Route())
-        self.gain, self.residual, self.bound = self.slopes(route.gain), route.residual, route.bound
+        self.gain, self.residual, self.bound = self.slopes("slope"), route.residual, route.bound
         self.push = None
         self.pushes = {s: self.pushed_along(s) for s in self.states}
         self.radii = {s: self.radius_along(s) for s in self.states}
@@ -109,9 +109,9 @@ class SeveralResults(Results):
         return lower, everywhere
 
     def bounds_by_state(self) -> dict[str, Fraction]:
-        """proofs/several.md (2), (3): the least bound of each state, by the norm and by comparison."""
+        """proofs/several.md (2), (3), (8): the least bound of each state, by the norm and by comparison."""
         lines = self.lines("componentwise", "componentwise")
-        if any(line.domain != self.domain for _, line in lines):
+        if any(line.domain is None or self.domain not in (line.domain, line.domain.of) for _, line in lines):
             raise Rejected("the comparison refers to another set")
         if not self.settled:
             return {}
@@ -197,7 +197,7 @@ class SeveralResults(Results):
         if r.kind == "steps":
             return self.stepped_along(r, c)
         if r.kind in ("bound", "sharp_bound") and r.state is not None:
-            span = None if r.kind == "sharp_bound" else self.long_run(r.state)
+            span = self.long_run(r.state)  # by the best argument, for either name
             proved = self.whole and span is not None and compared(r.relation, Span(None, span.upper), c)
             taken = Span(None, None if span is None else span.lower)
             return verdict(proved, not self.any and opposed(r.relation, taken, c), span)
@@ -259,7 +259,8 @@ class SeveralResults(Results):
     def by_state(self) -> dict[str, dict[str, Span | None]]:
         found: dict[str, dict[str, Span | None]] = {}
         for s in self.states:
-            found[s] = {"bound": self.long_run(s), "sharp_bound": None, "radius": self.radii[s], "push": self.pushes[s]}
+            far = self.long_run(s)
+            found[s] = {"bound": far, "sharp_bound": far, "radius": self.radii[s], "push": self.pushes[s]}
         return found
 
     def targets(self) -> dict[str, Span]:
@@ -274,8 +275,3 @@ class SeveralResults(Results):
             columns = tuple(zip(*rows, strict=True))
             rows = tuple(tuple(dot(a, b) for b in columns) for a in columns)
         return {"kind": self.metric.kind, "matrix": [[str(x) for x in row] for row in rows]}
-
-
-def results_of(proof: Proof) -> Results:
-    """What a proof amounts to, of one state or of several."""
-    return SeveralResults(proof) if len(proof.derivation.states) > 1 else Results(proof)

@@ -45,6 +45,8 @@ class Route:
 class Results:
     """Everything `results` may claim; `needed` collects the lines it rests on."""
 
+    part = ""  # the stance the lines are about, or the step from one to the next (graph_outcomes.py)
+
     def __init__(self, proof: Proof, variant: int = 0) -> None:
         self.proof, self.variant, self.needed = proof, variant, set[int]()
         self.unsupported = 0  # of what has to stay positive throughout a stance, the first that is not shown to
@@ -78,7 +80,7 @@ class Results:
         self.lift(None if self.best is None else self.best.upper)
         route = self.routes.get(self.reported, Route())
         self.residual, self.bound = route.residual, route.bound
-        self.gain = self.slopes(self.contraction() if self.reported == "curve" else route.gain)
+        self.gain = self.contraction() if self.reported == "curve" else self.slopes(self.reported)
         self.push = self.pushed()
         numbered = enumerate(self.statement.requirements, 1)
         self.requirements = [self.required(n, r) for n, r in numbered if not variant or n == variant]
@@ -94,6 +96,14 @@ class Results:
     def norm(self) -> dict[str, Any]:
         """The metric, as `results.metric` has it."""
         return {"kind": "box", "weights": {self.state: "1"}}
+
+    def stances(self) -> dict[str, Results]:
+        """What is known of each stance, where they have names."""
+        return {}
+
+    def leaves_out(self, r: Any) -> bool:
+        """Whether `over` of a requirement may leave out values that occur."""
+        return self.derivation.leaves_out(r)
 
     def set_found(self, invariant: Line | None, ball: Line) -> tuple[str | None, bool]:
         """Its kind, and whether requirements may refer to it: proofs/invariant-set.md (4)."""
@@ -212,15 +222,26 @@ class Results:
 
     def contraction(self) -> Span:
         """The best gain of the routes that have one: a curve's slope is no contraction."""
-        found = [r.gain for n, r in self.routes.items() if n != "curve"]
+        found = [self.slopes(n) for n in self.routes if n != "curve"]
         lowers = [g.lower for g in found if g.lower is not None]
         uppers = [g.upper for g in found if g.upper is not None]
         every = len(lowers) == len(found) and (not self.statement.correction or "split" in self.routes)
         return Span(min(lowers, default=None) if every else None, min(uppers, default=None))
 
-    def slopes(self, gain: Span) -> Span:
-        """A gain without its upper end where k is no bound of slopes: proofs/stance.md (5)."""
-        return Span(gain.lower, None) if self.derivation.loose() else gain
+    def slopes(self, name: str) -> Span:
+        """The gain of a route; where its k is that at constant signals, under any course: proofs/signals.md (4)."""
+        if name not in self.routes:
+            return NOTHING
+        gain = self.routes[name].gain
+        if name == "curve" or not self.derivation.loose(name):
+            return gain
+        proves = "split-signal-slope[" if name == "split" else "signal-slope["
+        lines = [(n, x) for n, x in self.proof.lines.items() if (x.variant, x.rule) == (self.variant, "range")]
+        found = [(magnitude(x), n) for n, x in lines if x.proves.startswith(proves) and x.domain == self.domain]
+        if not found:
+            return Span(gain.lower, None)
+        self.needed.add(min(found)[1])
+        return Span(gain.lower, min(found)[0])
 
     def least_bound(self) -> Span | None:
         """How far the state can be in the long run, by the best argument on the set."""
@@ -256,8 +277,8 @@ class Results:
         return residual
 
     def lines(self, rule: str, proves: str) -> list[tuple[int, Line]]:
-        wanted = self.variant, rule, proves
-        return [(n, x) for n, x in self.proof.lines.items() if (x.variant, x.rule, x.proves) == wanted]
+        wanted = self.variant, self.part, rule, proves
+        return [(n, x) for n, x in self.proof.lines.items() if (x.variant, x.part, x.rule, x.proves) == wanted]
 
     def one(self, rule: str, proves: str) -> Line | None:
         found = self.lines(rule, proves)
@@ -328,7 +349,7 @@ class Results:
     def gained(self, r: Any, c: tuple[Fraction, Fraction]) -> Outcome:
         """Refuted only where no route is left that might have a smaller gain: proofs/attained.md (3)."""
         asked = self.statement.route
-        span = self.slopes(self.routes.get(asked, Route()).gain if asked in ("slope", "split") else self.contraction())
+        span = self.slopes(asked) if asked in ("slope", "split") else self.contraction()
         final = not self.any and (asked in ("slope", "split") or not self.statement.correction)
         proved = self.whole and compared(r.relation, Span(None, span.upper), c)
         return verdict(proved, final and opposed(r.relation, Span(None, span.lower), c), span)

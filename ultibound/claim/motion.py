@@ -192,7 +192,7 @@ def _pushing(scope: Scope, entries: list[int]) -> list[int]:
     return list(found)
 
 
-def _held(scope: Scope, m: Motion) -> tuple[dict[int, int], int]:
+def held(scope: Scope, m: Motion) -> tuple[dict[int, int], int]:
     """What stands for the parameters in a scope, and the duration; Bad where rates rest on other things it binds."""
     g = scope.graph
     duration, axes = _dynamics(scope)[0], _axes(scope.claim)
@@ -227,7 +227,7 @@ def landed(scope: Scope, m: Motion, root: int, phase: int | None = None) -> int:
     g = scope.graph
     if not set(g.variables(root)) & {TIME, *m.states}:
         return root
-    by, duration = _held(scope, m)
+    by, duration = held(scope, m)
     values = [by[g.add("variable", name=p.name)] for p in m.parameters]
     one = g.number(1)
     sigma = one if phase is None else g.add("sub", g.add("mul", g.number(2), phase), one)
@@ -245,7 +245,7 @@ def landed(scope: Scope, m: Motion, root: int, phase: int | None = None) -> int:
 
 def supported(scope: Scope, m: Motion, root: int, phase: int) -> int:
     """One of `positive` at a phase of the stance."""
-    by, _ = _held(scope, m)
+    by, _ = held(scope, m)
     return substituted(scope.graph, root, {**by, scope.graph.add("variable", name=PHASE): phase})
 
 
@@ -256,7 +256,7 @@ def grown(scope: Scope, m: Motion, state: str, phase: int) -> int:
     if g.gates[landing].op != "variable" or g.gates[landing].name not in m.states or len(m.states) > 2:
         raise Bad(f"next.{state} is not one of at most two continuous states, so a push during the stance has no place")
     i = m.states.index(g.gates[landing].name) + 1
-    by, _ = _held(scope, m)
+    by, _ = held(scope, m)
     values = [by[g.add("variable", name=p.name)] for p in m.parameters]
     one = g.number(1)
     early = g.add("sub", g.add("mul", g.number(2), phase), one)

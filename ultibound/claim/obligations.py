@@ -8,15 +8,17 @@ from __future__ import annotations
 from collections.abc import Mapping, Sequence
 from dataclasses import dataclass, replace
 from fractions import Fraction
+from functools import partial
 from itertools import pairwise
 from math import prod
 
 from .constants import constant
 from .errors import Bad
 from .graph import Graph
-from .model import Claim, Quantity, Range, Requirement
+from .model import Claim, Quantity, Range, Requirement, Stance
 from .motion import PHASE, Motion, copy, grown, landed, motion, supported
 from .resolve import Scope
+from .signals import excess, followed, instant
 
 RANGED = ("value", "sensitivity", "always", "throughout")  # requirements that a range proves
 MOST_CELLS = 1_000_000
@@ -93,8 +95,14 @@ class Obligations:
         met = {s: self.graph.variables(self._scope({}).name(f"target({s})")) for s in self.states}
         self._fixed_targets = {s for s, names in met.items() if not names}
 
-    def _scope(self, bound: Mapping[str, int], cut: str = "") -> Scope:
-        return Scope(self.graph, self.claim, self.stance, bound, cut, self._landed)
+    def _scope(self, bound: Mapping[str, int], cut: str = "", parts: int = 0) -> Scope:
+        """`parts`: into how many a stance is cut for signals of any course; 0: they are constants."""
+        landing = partial(self._followed, parts=parts) if parts else self._landed
+        return Scope(self.graph, self.claim, self.stance, bound, cut, landing)
+
+    def _followed(self, scope: Scope, gate: int, parts: int) -> int:
+        m = self.motion
+        return gate if m is None else followed(scope, m, gate, parts, {d: self._middle(d) for d in m.signals})
 
     def _landed(self, scope: Scope, gate: int, phase: int | None = None) -> int:
         return gate if self.motion is None else landed(scope, self.motion, gate, phase)
@@ -115,20 +123,22 @@ class Obligations:
         s, x, on = of or self.state, by or self.state, f"@{steps}" if steps else ""
         return self._of(f"slope{on}[{s},{x}]", self._after(bound, s, x, steps), x, ranges)
 
-    def miss(self, state: str = "", steps: int = 0) -> Obligation:
-        """target-miss[s]: F(x*, w) − x* over uncertain values; target-miss@j[s]: of j steps."""
+    def miss(self, state: str = "", steps: int = 0, onto: Stance | None = None) -> Obligation:
+        """target-miss[s]: F(x*, w) − x* over uncertain values; target-miss@j[s]: of j steps.
+
+        `onto`: the second x* is that of the stance that follows.
+        """
         s, on = state or self.state, f"@{steps}" if steps else ""
         targets = {x: self._scope({}).name(f"target({x})") for x in self.states}
-        return self._of(
-            f"target-miss{on}[{s}]", self.graph.difference(self._after(targets, s, steps=steps), targets[s])
-        )
+        aim = Scope(self.graph, self.claim, onto or self.stance).name(f"target({s})")
+        return self._of(f"target-miss{on}[{s}]", self.graph.difference(self._after(targets, s, steps=steps), aim))
 
-    def _after(self, bound: Mapping[str, int], s: str, cut: str = "", steps: int = 0) -> int:
+    def _after(self, bound: Mapping[str, int], s: str, cut: str = "", steps: int = 0, parts: int = 0) -> int:
         """A state after the steps of the horizon, or as many as said, less what the target has moved until the last.
 
         proofs/horizon.md (1)
         """
-        scope, count = self._scope(bound, cut), steps or self.claim.horizon
+        scope, count = self._scope(bound, cut, parts), steps or self.claim.horizon
         for j in range(2, count + 1):
             scope = self._scope({**bound, **self._onward(scope, j)})
         root, target = scope.name(f"next({s})"), f"target({s})"
@@ -174,11 +184,41 @@ class Obligations:
 
     def split_slope(self, domain: Domain) -> Obligation:
         """split-slope[s,s]: ∂(x + F − N)/∂x over the set, N the map without its correction (proofs/split.md)."""
+        s, (bound, ranges) = self.state, self._set(domain)
+        return self._of(f"split-slope[{s},{s}]", self._split(bound), s, ranges)
+
+    def _split(self, bound: dict[str, int], parts: int = 0) -> int:
         s, g = self.state, self.graph
-        bound, ranges = self._set(domain)
-        change = g.difference(self._after(bound, s, s), self._after({**bound, **self._uncorrected()}, s, s))
-        kept = self._scope(bound, cut=s).name(s)
-        return self._of(f"split-slope[{s},{s}]", g.add("add", kept, change), s, ranges)
+        change = g.difference(
+            self._after(bound, s, s, parts=parts), self._after({**bound, **self._uncorrected()}, s, s, parts=parts)
+        )
+        return g.add("add", self._scope(bound, s).name(s), change)
+
+    def under_any_course(self, domain: Domain, parts: int, route: str = "slope") -> Obligation:
+        """signal-slope[M], split-signal-slope[M]: what the route takes slopes of, signals of any course in M parts.
+
+        Each part has a phase and a value of every signal (proofs/signals.md). Raises Bad where no such bound is known.
+        """
+        s, (bound, ranges) = self.state, self._set(domain)
+        split = route == "split"
+        root = self._split(bound, parts) if split else self._scope(bound, s, parts).name(f"next({s})")
+        name = f"{'split-' if split else ''}signal-slope[{parts}]"
+        return self._of(name, root, s, {**self._courses(parts), **ranges})
+
+    def _courses(self, parts: int) -> dict[str, tuple[Ends, Ends]]:
+        """Phases of the parts of a stance, and what signals may be above the middles of their ranges."""
+        found: dict[str, tuple[Ends, Ends]] = {}
+        for d in self.motion.signals if self.motion is not None else ():
+            ((low, high),), _, _ = self._cells(self.claim.uncertain[d])
+            middle = self._middle(d)
+            for q in range(parts):
+                found[instant(d, q + 1)] = ((Fraction(q, parts), Fraction(q + 1, parts)),) * 2
+                found[excess(d, q + 1)] = ((low - middle, high - middle),) * 2
+        return found
+
+    def _middle(self, signal: str) -> Fraction:
+        ((low, high),), _, _ = self._cells(self.claim.uncertain[signal])
+        return (low + high) / 2
 
     def split_residual(self, domain: Domain) -> Obligation:
         """split-residual[s]: N − x + F(x*) − N(x*) over the set."""
@@ -326,6 +366,11 @@ class Obligations:
             return set()
         phase = self.graph.add("variable", name=PHASE)
         return {n for k in self.motion.positive for n in self.graph.variables(supported(scope, self.motion, k, phase))}
+
+    def loose(self, route: str) -> bool:
+        """Whether the slopes of a route are those at constant signals only (proofs/stance.md (5))."""
+        whole = Domain("region", Fraction(0), (Fraction(0), Fraction(0)))
+        return self._stirred((self.split_slope(whole) if route == "split" else self.slope(whole)).root, self.state)
 
     def _stirred(self, root: int, by: str) -> bool:
         """Whether a signal's effect follows a marked name (proofs/stance.md (5))."""

@@ -18,7 +18,7 @@ from ..certificate.results import assembled
 from ..checker.derive import Derivation
 from ..checker.derive import varied as statement_varied
 from ..checker.flows import Flows
-from ..checker.outcomes import results_of
+from ..checker.graph_outcomes import results_of
 from ..checker.reals import Undefined
 from ..checker.rules import Rejected
 from ..checker.theorems import levels, movement, sharpest
@@ -41,6 +41,9 @@ TARGET_GAP = 1e-8  # suprema are taken over a ball larger by as much: proofs/inv
 SPARE = 0.01  # share of a smaller ball's radius left free
 MOST_ROUGH = 300  # cells of a library over which no curve is followed unless one is asked for
 ROUGH, QUICK, FEW, MOST = 3e-2, 8, 1, 60  # gap, leaves a shell and shells of a rough curve; shells of a sharp one
+PARTS, PARTED = (1, 4), 1.05  # of a stance for signals of any course, and the ratio to constant ones that is enough
+COURSE_GAP = 1e-3  # each part adds a phase and a value of every signal
+ASKED, UNASKED = 200, 60  # leaves, beside two a cell, where a requirement is about the gain and where none is
 TRIED = 4  # orbits, the furthest first
 REACH, ENOUGH = 10_000, 200  # steps of the longest path, and of one that is longer than asked for
 
@@ -310,6 +313,7 @@ class Attempt:
         floor = self.gap * self.moved
         miss = self.ranges.enclose(self.obligations.miss(), None, magnitude=True, floor=floor)
         self._pair("slope", slope, miss, moves)
+        self._courses("slope", slope, domain, on)
 
     def _split(self, domain: Domain, on: int, moves: list[Proved] | None) -> None:
         """Gain and residual of the split route, where a correction is named: proofs/split.md."""
@@ -323,6 +327,25 @@ class Attempt:
             floor = self.gap * self.moved
             kept = self.ranges.enclose(of_kept, on, magnitude=True, floor=floor)
             self._pair("split", slope, kept, moves)
+            self._courses("split", slope, domain, on)
+
+    def _courses(self, route: str, slope: Proved | None, domain: Domain, on: int) -> None:
+        """Slopes under signals of any course, where constant ones do not tell: proofs/signals.md."""
+        if slope is None or not self.obligations.loose(route):
+            return
+        asked = any(r.kind == "gain" for r in self.claim.requirements)
+        enough = PARTED * to_float(max(slope.most, -slope.least))  # of what constant signals attain
+        for parts in PARTS if asked else PARTS[:1]:
+            try:
+                of_any = self.obligations.under_any_course(domain, parts, route)
+            except Bad as why:
+                self.ranges.limits[f"signal-slope ({route})"] = str(why)
+                return
+            gap, tops = max(self.gap, COURSE_GAP), prod(len(v.cells) for v in of_any.variables)
+            cells = 2 * tops + (ASKED if asked else UNASKED)
+            found = self.ranges.enclose(of_any, on, magnitude=True, points=False, gap=gap, cells=cells)
+            if found is not None and to_float(found.size) <= enough:
+                return
 
     def _pair(self, route: str, slope: Proved | None, residual: Proved | None, moves: list[Proved] | None) -> None:
         if slope is not None and residual is not None and moves is not None:
@@ -331,7 +354,7 @@ class Attempt:
             self.pairs[route] = self.writer.theorem(route, route, uses, concludes)
 
     def _curve(self, domain: Domain, on: int, moves: list[Proved] | None, lost: bool) -> None:
-        """Shells of the error curve, the line above them and the sharp bound: proofs/curve.md. A smaller ball to try."""
+        """Shells of the error curve, the line above them and the sharp bound: proofs/curve.md.."""
         o, w, claim = self.obligations, self.writer, self.claim
         cells = prod(len(v.cells) for v in o.slope(domain).variables)
         if moves is None or (cells > MOST_ROUGH and not self.sharp):  # over so many even a rough curve would cost more
@@ -423,7 +446,7 @@ class Attempt:
 
     def _target_inside(self, s: str, region: tuple[Fraction, Fraction]) -> None:
         for n, line in self.writer.proof.lines.items():
-            met = (line.rule, line.proves) == ("point", f"target[{s}]")
+            met = (line.part, line.rule, line.proves) == (self.writer.part, "point", f"target[{s}]")
             if met and (line.concludes["lower"] > region[1] or line.concludes["upper"] < region[0]):
                 at = self.writer.raw[n - 1]["witness"]["at"]
                 where = ", ".join(f"{k} = {float(Fraction(v)):.6g}" for k, v in at.items() if not v.startswith("#"))
