@@ -14,6 +14,7 @@ import pytest
 
 from tests.checker import (
     test_boundaries,
+    test_horizon_boundaries,
     test_matrices,
     test_periodic_boundaries,
     test_product_boundaries,
@@ -31,6 +32,7 @@ PROOFS = (
     "results",
     "holding",
     "derive",
+    "horizon",
     "document",
     "__init__",
     "ranges",
@@ -63,10 +65,12 @@ def batteries(copies: Copies) -> dict[str, Battery]:
     """Of each module."""
     reading, stances = Battery(test_reading.CASES, 400), Battery(test_stance_boundaries.CASES)
     norms = Battery(test_matrices.CASES)
-    several = Battery(test_several_boundaries.CASES | test_periodic_boundaries.CASES | test_product_boundaries.CASES)
-    stance_cases = {f"stance: {n}": q for n, q in test_stance_boundaries.CASES.items()}
+    horizon_cases = {f"horizon: {n}": q for n, q in test_horizon_boundaries.CASES.items()}
     several_cases = {f"several: {n}": q for n, q in test_several_boundaries.CASES.items()}
-    proofs = Battery(test_boundaries.CASES | stance_cases | several_cases)
+    orbits = test_periodic_boundaries.CASES | test_product_boundaries.CASES
+    several = Battery(test_several_boundaries.CASES | orbits | horizon_cases)
+    stance_cases = {f"stance: {n}": q for n, q in test_stance_boundaries.CASES.items()}
+    proofs = Battery(test_boundaries.CASES | stance_cases | several_cases | horizon_cases)
     of_norms, of_reading = dict.fromkeys(NORMS, norms), dict.fromkeys(READING, reading)
     of_several = dict.fromkeys(SEVERAL, several)
     return dict.fromkeys(PROOFS, proofs) | dict.fromkeys(STANCES, stances) | of_norms | of_several | of_reading

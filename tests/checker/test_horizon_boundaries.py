@@ -264,6 +264,11 @@ def beyond_the_ball() -> None:
     for ends in (f'["-47/32 + 1{STEP}", "47/32"]', f'["-47/32", "47/32 - 1{STEP}"]'):
         changed = but(good, "claim text", good["claim"]["text"].replace('["-47/32", "47/32"]', ends))
         reject(f"kinked in {ends}", changed, "proof line 9", LEAVES + "v")
+    about = but(good, "proof 0 concludes", {"lower": "1/8", "upper": "1/8"}, "claim text", claim("1/8 + (v - 1/8)/4 + 2*max(v - 5/8, 0) + p", '["-43/32", "51/32"]', SIXTEENTH, "1/8", top="horizon = 2\nshrink = true"))
+    accept("kinked about 1/8", about)
+    for ends in (f'["-43/32 + 1{STEP}", "51/32"]', f'["-43/32", "51/32 - 1{STEP}"]'):
+        changed = but(about, "claim text", about["claim"]["text"].replace('["-43/32", "51/32"]', ends))
+        reject(f"kinked about 1/8 in {ends}", changed, "proof line 9", LEAVES + "v")
     three = kinked(3).entries("smaller ball", [("settles", "proved")])
     accept("kinked, three steps", three)
     for n, (uses, reason) in enumerate((
@@ -423,3 +428,385 @@ the_largest_ball_on_its_way()
 in_the_end()
 around_the_curve()
 names_of_fewer_steps()
+
+
+# what may stand in the steps of a horizon: a target that moves, values of a list, a library, a correction
+
+def figured(text: str, of: Sequence[tuple[str, str, str, Sequence[int], Sequence[str]]], ball: tuple[str, str, str] = ("0", "0", "1"), data: dict[str, str] | None = None) -> Draft:
+    """A target, a smaller ball and these ranges."""
+    d = Draft(text, data)
+    d.range("target[v]", ball[0], ball[1])
+    d.theorem("smaller-ball", "ball", [1], radius=ball[2])
+    for proves, low, high, uses, trees in of:
+        d.range(proves, low, high, uses, trees)
+    return d
+
+
+def led(residual: str = "9/32", asked: Sequence[str] = ("settles",)) -> Draft:
+    """v⁺ - c⁺ = -(v - c)/2 + p less what c moves, by 1/8 at most: two steps 1/4, 1/16 + 1/32 + 1/16 of the first movement, and 1/8 of the last."""
+    text = claim("c - (v - c)/2 + p", '["-5/4", "3"]', SIXTEENTH + '\nc = { range = ["-1/4", "1/4"], held = true, change = "1/8" }', "c", asked, "horizon = 2")
+    d = Draft(text)
+    d.range("target[v]", "-1/4", "1/4")
+    d.point("target[v]", {"c": "-1/4"}, "-1/4")
+    d.theorem("largest-ball", "ball", [1, 2], radius="1", outer="1")
+    d.point("image[v]", {"v": "3", "c": "-1/4", "p": "0"}, "-15/8")
+    d.range("target-slope[v,c]", "1", "1")
+    pairs = []
+    for on, k, miss, e in (("@1", "-1/2", "1/16", "3/16"), ("", "1/4", "5/32", residual)):
+        used = [d.range(f"slope{on}[v,v]", k, k, [3]), d.range(f"target-miss{on}[v]", f"-{miss}", miss, trees=["c"]), 5]
+        pairs.append(d.theorem("slope", f"slope{on}", used, gain=k.strip("-"), residual=e))
+    d.theorem("course", "course", [3, pairs[0]])
+    d.theorem("invariant-ball", "invariant", [3, pairs[1]])
+    d.theorem("ultimate-bound", "bound[slope]", [13, pairs[1]], bound="3/8")
+    d.point("slope[v,v]", {"error(v)": "1", "c": "1/4", "c@2": "0", "p": "1/16", "p@2": "0"}, "1/4", uses=[3])
+    d.point("target-miss[v]", {"c": "1/4", "c@2": "0", "p": "-1/16", "p@2": "1/16"}, "3/32")
+    return d
+
+
+def moving_targets() -> None:
+    """proofs/horizon.md (1): what the target moves between the steps is taken off, and one movement counted."""
+    good = led().entries("ball", [("settles", "proved")])
+    accept("led", good)
+    # (3/32 + 1/8)/(1 - 1/4), and 9/32 over the same
+    figures("led", good, {"gain": ("1/4", "1/4"), "residual": ("7/32", "9/32"), "bound": ("7/24", "3/8"), "states v bound": (None, "3/8"), "states v push": ("5/8", None)})
+    for number, key, by, reason in ((6, "lower", 1, WIDER), (7, "lower", 1, WIDER), (7, "upper", -1, WIDER), (8, "residual", -1, FEWER), (9, "upper", -1, WIDER), (10, "lower", 1, WIDER), (10, "upper", -1, WIDER), (11, "residual", -1, FEWER), (15, "lower", 1, WIDER), (16, "lower", 1, WIDER)):
+        old = good["proof"][number - 1]["concludes"][key]
+        reject(f"led: line {number} {key}", but(good, f"proof {number - 1} concludes {key}", hair(old, by)), f"proof line {number}", reason)
+    for value in (hair("0", 1), hair("0", -1), "1/8"):
+        reject(f"led: a point that moves by {value[:4]}", but(good, "proof 14 witness at c@2", value), "proof line 15", "at.c@2: outside the range")
+    for key in ("c@2", "p@2"):
+        reject(f"led: a point without {key}", but(good, f"proof 14 witness at {key}", GONE), "proof line 15", "at: one value for each variable of the obligation")
+        reject(f"led: a point of one step with {key}", but(good, f"proof 3 witness at {key}", "0"), "proof line 4", "at: one value for each variable of the obligation")
+    for uses in ([6, 7], [6, 7, 5, 5]):
+        reject(f"led: the first step rests on {len(uses)}", but(good, "proof 7 uses", uses), "proof line 8", "slope@1 rests on range slope@1[v,v], range target-miss@1[v], range target-slope[v,c]")
+
+
+def lists() -> None:
+    """Values of a list are fresh at every step, held ones are not."""
+    for held, trees, k, e in ((False, 4, "1/4", "3/4"), (True, 2, "1/4", "3/4")):
+        text = claim("v/2 + w/2", "[-1, 1]", f"w = {{ values = [-1, 1]{', held = true' if held else ''} }}", top="horizon = 2")
+        d = figured(text, [("image[v]", "-1", "1", [], ["d"] * 2)])
+        d.theorem("invariant-region", "invariant", [1, 3])
+        slope, miss = d.range("slope[v,v]", k, k, [4], ["d"] * trees), d.range("target-miss[v]", f"-{e}", e, trees=["d"] * trees)
+        pair = d.theorem("slope", "slope", [slope, miss], gain=k, residual=e)
+        d.theorem("ultimate-bound", "bound[slope]", [4, pair], bound="1")
+        at = {"w": "#1"} if held else {"w": "#1", "w@2": "#1"}
+        d.point("target-miss[v]", at, e)
+        good = d.entries("region", [("settles", "undecided")])
+        accept(f"a list, held {held}", good)
+        figures(f"a list, held {held}", good, {"residual": (e, e)})
+        for n in (trees - 1, trees + 1):
+            reject(f"a list, held {held}, {n} trees", but(good, "proof 5 witness trees", ["d"] * n), "proof line 6", "trees")
+    reject("a list that changes", but(good, "claim text", good["claim"]["text"].replace("held = true", "held = true, change = 1")), "claim", "horizon: a held quantity of a finite list that changes")
+    for change in ('"1/2"', "0", "3"):  # of a range, by any amount; no more than its width
+        text = claim("v/2 + w/2", "[-1, 1]", f"w = {{ range = [-1, 1], held = true, change = {change} }}", top="horizon = 2")
+        far = str(Q(3, 4) + Q(1, 2) * min(Q(change.strip('"')), 2))
+        d = figured(text, [("image[v]", "-1", "1", [], ["d"])])
+        d.theorem("invariant-region", "invariant", [1, 3])
+        used = [d.range("slope[v,v]", "1/4", "1/4", [4]), d.range("target-miss[v]", f"-{far}", far)]
+        d.theorem("slope", "slope", used, gain="1/4", residual=far)
+        good = d.entries("region", [("settles", "undecided")])
+        accept(f"a range that changes by {change}", good)
+        for end, by in (("lower", 1), ("upper", -1)):
+            reject(f"a range that changes by {change}: {end}", but(good, f"proof 5 concludes {end}", hair(good["proof"][5]["concludes"][end], by)), "proof line 6", WIDER)
+
+
+def libraries() -> None:
+    """A library is read where the step before leads, clipped to the region; without one nothing is clipped."""
+    rest = '[library]\nfile = "t.csv"\nat = { v_node = "v" }'
+    table = "v_node,r\n-1,-0.5\n0,0\n1,0.5\n"
+    # v - r leads to v/2, but may seem to lead to 3/2, beyond the grid: where it is clipped the slope is 1/2, or 0
+    text = claim("v - r + p", "[-1, 1]", QUARTER, top="horizon = 2", rest=rest)
+    d = figured(text, [("image[v]", "-3/4", "3/4", [], ["c", "c"])], data={"t.csv": table})
+    d.theorem("invariant-region", "invariant", [1, 3])
+    used = [d.range("slope[v,v]", "-1/4", "1/2", [4], ["d", "d"]), d.range("target-miss[v]", "-5/8", "5/8")]
+    d.theorem("slope", "slope", used, gain="1/2", residual="5/8")
+    good = d.entries("region", [("settles", "undecided")])
+    accept("a library on the way", good)
+    for number, end, by in ((5, "lower", 1), (5, "upper", -1), (6, "lower", 1), (6, "upper", -1)):
+        reject(f"a library on the way: line {number} {end}", but(good, f"proof {number - 1} concludes {end}", hair(good["proof"][number - 1]["concludes"][end], by)), f"proof line {number}", WIDER)
+
+
+def corrections() -> None:
+    """proofs/horizon.md (1): the correction is 0 in every step; v + f + p with f = -v/2, two steps keep v/4."""
+    text = claim("v + f + p", "[-1, 1]", QUARTER, top='horizon = 2\ncorrection = ["f"]', rest='[define]\nf = "-v/2"')
+    d = figured(text, [("image[v]", "-3/4", "3/4", [], ["c"])])
+    d.theorem("invariant-region", "invariant", [1, 3])
+    used = [d.range("split-slope[v,v]", "1/4", "1/4", [4]), d.range("split-residual[v]", "-3/8", "3/8", [4], ["c"])]
+    pair = d.theorem("split", "split", used, gain="1/4", residual="3/8")
+    d.theorem("ultimate-bound", "bound[split]", [4, pair], bound="1/2")
+    good = d.entries("region", [("settles", "proved")])
+    accept("a correction", good)
+    for number, key, by, reason in ((5, "lower", 1, WIDER), (5, "upper", -1, WIDER), (6, "lower", 1, WIDER), (6, "upper", -1, WIDER), (7, "gain", -1, FEWER), (7, "residual", -1, FEWER)):
+        old = good["proof"][number - 1]["concludes"][key]
+        reject(f"a correction: line {number} {key}", but(good, f"proof {number - 1} concludes {key}", hair(old, by)), f"proof line {number}", reason)
+
+
+def requirements() -> None:
+    """proofs/horizon.md (2c): ranges are taken over all that a step may start from, points from the set."""
+    asked = ["settles", "value(v) <= 47/32", f"value(v) <= 47/32 - 1{STEP}", "always(v >= -47/32)", "value(p) <= 1/16", "radius(v) >= 5/8"]
+    for top in ("shrink = true", ""):
+        # a point of a set refutes nothing where any smaller set would do; where it is not the set asked for, nothing is proved either
+        verdicts = ["proved", "proved", "undecided", "proved", "proved", "proved"] if top else ["undecided", "undecided", "undecided", "undecided", "proved", "proved"]
+        d = kinked(asked=asked, top=top)
+        for n, (low, high) in ((2, ("-47/32", "47/32")), (3, ("-47/32", "47/32")), (4, ("0", "47/16"))):
+            d.range(f"require[{n}]", low, high, [9])
+        d.point("require[2]", {"v": "5/8"}, "5/8", uses=[2])
+        d.range("require[5]", "-1/16", "1/16", [9])
+        good = d.entries("smaller ball", list(zip(asked, verdicts, strict=True)))
+        judged(f"ranges {top}", good)
+        for n in (12, 13, 14, 16):
+            reject(f"ranges {top}: line {n} over the set alone", but(good, f"proof {n - 1} uses", [2]), "results", f"require[{n - 10 if n < 16 else 5}]: over another set than the gain")
+        reject(f"ranges {top}: a point from elsewhere", but(good, "proof 14 uses", [9]), "results", "require[2]: a point of another set")
+        reject(f"ranges {top}: a point beyond the set", but(good, "proof 14 witness at v", hair("5/8", 1)), "proof line 15", "at.v: outside the range")
+        for number, end, by in ((12, "lower", 1), (12, "upper", -1), (14, "lower", 1)):
+            reject(f"ranges {top}: line {number} {end}", but(good, f"proof {number - 1} concludes {end}", hair(good["proof"][number - 1]["concludes"][end], by)), f"proof line {number}", WIDER)
+    d = kinked(asked=["value(v) <= 47/32"], x="5/2")
+    d.range("require[1]", "-47/32", "47/32", [9])
+    judged("ranges within the region", d.entries("smaller ball", [("value(v) <= 47/32", "proved")]))
+    # kept by the first step: over the set itself, by whichever line gives it
+    for on in (3, 11, 12):
+        d = turning(2, ["value(v) <= 1", "value(v) < 1"])
+        d.range("require[1]", "-1", "1", [on])
+        d.range("require[2]", "-1", "1", [on])
+        d.point("require[2]", {"v": "1"}, "1", uses=[on])
+        judged(f"ranges over the ball, {on}", d.entries("ball", [("value(v) <= 1", "proved"), ("value(v) < 1", "refuted")]))
+    # without a course nothing is known of points, and nothing of the set
+    d = turning(2, ["value(v) < 1", "value(p) <= 1/4"])
+    d.range("require[2]", "-1/4", "1/4", [3])
+    gone = without(d.entries(None, [("value(v) < 1", "undecided"), ("value(p) <= 1/4", "proved")]), 2, 4, 5, 6, 7, 8, 9, 10, 11, 12, 13, 14, 15)
+    gone = but(gone, "proof 1", {**gone["proof"][1], "rule": "smaller-ball", "uses": [1], "concludes": {"radius": "1"}})
+    judged("without a course", gone)
+
+
+moving_targets()
+lists()
+libraries()
+corrections()
+requirements()
+
+# two states, x⁺ = 2y + p, y⁺ = x/8 + q, |p| <= 1/8, |q| <= 1/16: two steps are x/4 + 2q + p', y/4 + p/8 + q'; in the end |x| <= 1/3, |y| <= 5/48
+
+CROSSED = ("2*y + p", "x/8 + q")
+NOISE = 'p = ["-1/8", "1/8"]\nq = ["-1/16", "1/16"]'
+SQUARE, FLAT = ([["1", "0"], ["0", "1"]],) * 2, ([["1", "0"], ["0", "4"]], [["1", "0"], ["0", "1/4"]])
+
+
+def weighed(y: str) -> dict[str, Any]:
+    return {"kind": "box", "weights": {"x": "1", "y": y}}
+
+
+def square(radius: str = "1", ends: tuple[str, str] = ('["-17/8", "17/8"]', '["-17/8", "17/8"]'), asked: Sequence[str] = ("settles",), top: str = "shrink = true", compared: bool = True) -> Lines:
+    """In the largest of |x|, |y| a step has k = 2, ε = 1/8, two have 1/4 and 1/4. Lines: 1 metric, 2 3 targets, 4 ball, 5 6 7 slopes, misses and pair of the
+    first step, 8 9 10 of the horizon, 11 course, 12 invariant, 13 bound, 14 15 entries, 16 comparison."""
+    d = Lines(claim_of_two(*CROSSED, ends=ends, uncertain=NOISE, asked=asked, top=f"horizon = 2\n{top}", rest="[metric]\nkind = 'box'"))
+    d.metric("box", *SQUARE)
+    d.range("target[x]", "0", "0")
+    d.range("target[y]", "0", "0")
+    d.theorem("smaller-ball", "ball", [1, 2, 3], radius=radius)
+    return steps_in(d, 4, ("2", "1/8", "1/4", "1/4"), "1/3", compared)
+
+
+def flat(asked: Sequence[str] = ("settles",)) -> Lines:
+    """In the largest of |x|, 4|y| a step has k = 1/2, ε = 1/4: it keeps the largest ball, of radius 1/2; two have 1/4 and 5/16.
+    Lines: 1 metric, 2 3 targets, 4 point, 5 ball, 6 escape, 7 to 18 as 5 to 16 above, 19 20 stretches."""
+    d = Lines(claim_of_two(*CROSSED, ends=('["-1/2", "1/2"]', "[-2, 2]"), uncertain=NOISE, asked=asked, top="horizon = 2", rest="[metric]\nweights = { y = 4 }"))
+    d.metric("box", *FLAT)
+    d.range("target[x]", "0", "0")
+    d.range("target[y]", "0", "0")
+    d.point("target[x]", {}, "0")
+    d.theorem("largest-ball", "ball", [1, 2, 3, 4], radius="1/2", outer="1/2")
+    d.point("image[x]", {"y": "2", "p": "0"}, "4")
+    steps_in(d, 5, ("1/2", "1/4", "1/4", "5/16"), "5/12", True)
+    d.stretch("slopes", {"x": "0", "y": "0", "p": "0", "p@2": "0", "q": "0", "q@2": "0"}, ["1", "0"], "1/4", [5])
+    d.stretch("misses", {"p": "1/8", "p@2": "0", "q": "0", "q@2": "1/16"}, ["1"], "5/16", [5])
+    return d
+
+
+def steps_in(d: Lines, ball: int, norms: Sequence[str], bound: str, compared: bool) -> Lines:
+    pairs = []
+    for on, k, e in (("@1", *norms[:2]), ("", *norms[2:])):
+        used = [d.matrix(f"slopes{on}", k, [ball]), d.matrix(f"misses{on}", e, [ball])]
+        pairs.append(d.theorem("slope", f"slope{on}", used, gain=k, residual=e))
+    d.theorem("course", "course", [ball, pairs[0]])
+    invariant = d.theorem("invariant-ball", "invariant", [ball, pairs[1]])
+    d.theorem("ultimate-bound", "bound[slope]", [invariant, pairs[1]], bound=bound)
+    if compared:
+        used = [d.table("slopes", ["1/4", "0", "0", "1/4"], [ball]), d.table("misses", ["1/4", "5/64"], [ball])]
+        d.compared([invariant, *used], ["1", "1"], ["1/3", "5/48"], "1/3", "5/48")
+    return d
+
+
+def two_states() -> None:
+    """proofs/horizon.md (2b) in a norm: bounds by comparison of two steps hold at all of them."""
+    asked = [
+        ("settles", "proved"), ("gain <= 1/4", "proved"), ("gain < 1/4", "refuted"), ("residual <= 5/16", "proved"), ("residual < 5/16", "refuted"), ("bound <= 5/12", "proved"), ("bound(x) <= 1/3", "proved"), ("bound(x) < 1/3", "undecided"), ("bound(y) <= 5/48", "proved"), ("bound(y) < 5/48", "undecided"),
+        ("push(x) >= 1/12", "undecided"), (f"push(x) >= 1/12 - 1{STEP}", "proved"), ("radius(y) >= 1/8", "proved"),
+        # from 1/2 to 1/2 after one step; 1/4 1/2 + 5/16 = 7/16 after two
+        ("steps(x, 1/2, 1/2) <= 0", "proved"), ("steps(x, 1/2, 7/16) <= 2", "proved"), (f"steps(x, 1/2, 7/16 - 1{STEP}) <= 3", "undecided"), ("steps(y, 1/8, 7/64) <= 2", "proved"), ("steps(x, 0, 5/12) < 1", "proved"), (f"steps(x, 1/2 + 1{STEP}, 1/2) <= 9", "undecided"),
+    ]
+    judged("flat", flat([that for that, _ in asked]).found("ball", asked, weighed("4")))
+    good = flat().found("ball", [("settles", "proved")], weighed("4"))
+    figures("flat", good, {
+        "gain": ("1/4", "1/4"), "residual": ("5/16", "5/16"), "bound": ("5/12", "5/12"), "radius": ("1/2", "1/2"), "states x bound": (None, "1/3"), "states y bound": (None, "5/48"), "states x push": ("1/12", None), "states y push": ("1/48", None),
+    })
+    for number, key, by, reason in (
+        (7, "norm", -1, "slopes@1: a leaf is not shown"), (8, "norm", -1, "misses@1: a leaf is not shown"), (9, "gain", -1, FEWER), (9, "residual", -1, FEWER), (10, "norm", -1, "slopes: a leaf is not shown"), (11, "norm", -1, "misses: a leaf is not shown"), (12, "gain", -1, FEWER), (12, "residual", -1, FEWER), (15, "bound", -1, "bound: less"),
+        (16, "1,1", -1, "slopes: entry 1,1"), (16, "1,2", -1, "slopes: entry 1,2"), (17, "1,1", -1, "misses: entry 1,1"), (17, "2,1", -1, "misses: entry 2,1"), (18, "x", -1, "x: less than"), (18, "y", -1, "y: less than"), (19, "lower", 1, "slopes: the direction"), (20, "lower", 1, "misses: the direction"),
+    ):
+        old = good["proof"][number - 1]["concludes"][key]
+        reject(f"flat: line {number} {key}", but(good, f"proof {number - 1} concludes {key}", hair(old, by)), f"proof line {number}", reason)
+    for key, old in (("gain", "1/2"), ("residual", "1/4")):
+        reject(f"flat: the first step does not keep the ball, {key}", but(good, f"proof 8 concludes {key}", hair(old, 1)), "proof line 13", LEAVES + "x")
+    for on in ("@0", "@2", "@01", "@", "@1@2", "2"):
+        for number, kind in ((7, "slopes"), (8, "misses")):
+            reason = "a matrix proves slopes or misses, or these after fewer steps" if on == "2" else "is no obligation of this claim" if on == "@" else "steps on the way are counted from 1"
+            reject(f"flat: {kind}{on}", but(good, f"proof {number - 1} proves", f"{kind}{on}"), f"proof line {number}", reason)
+    uses: Sequence[int]
+    for number, uses, reason in (
+        (9, [7, 11], "slope@1 rests on matrix slopes@1, matrix misses@1"), (9, [8, 7], "slope@1 rests on"), (12, [7, 8], "slope rests on matrix slopes, matrix misses"), (14, [5, 9], "the gain refers to another set"), (15, [14, 9], "the gain refers to another set, or to fewer steps"),
+    ):
+        if max(uses) < number:
+            reject(f"flat: line {number} uses {uses}", but(good, f"proof {number - 1} uses", uses), f"proof line {number}", reason)
+    for number, kind in ((16, "slopes"), (17, "misses")):
+        early = but(good, f"proof {number - 1} proves", f"{kind}@1", f"proof {number - 1} concludes", {"1,1": "2", "1,2": "2", "2,1": "2", "2,2": "2"} if kind == "slopes" else {"1,1": "2", "2,1": "2"})
+        reject(f"flat: a comparison of {kind} of fewer steps", early, "proof line 18", "componentwise rests on entries slopes, entries misses")
+    rows = but(good, "proof 13", {"rule": "invariant-rows", "proves": "invariant", "uses": [5, 16, 17], "witness": {}, "concludes": {}})
+    reject("flat: rows of entries yet to come", rows, "proof line 14", "uses: earlier line numbers only")
+
+
+def beyond_a_box() -> None:
+    """proofs/horizon.md (2c), (3) in a norm: 2 + 1/8 is the edge of the region; in the end 2/3 + 1/8 = 19/24 < 1, and at the radius itself."""
+    good = square().found("smaller ball", [("settles", "proved")], weighed("1"))
+    figures("square", good, {"bound": (None, "1/3"), "states x bound": (None, "1/3"), "states y bound": (None, "5/48"), "states x push": ("2/3", None)})
+    for key in ("gain", "residual"):
+        old = good["proof"][6]["concludes"][key]
+        reject(f"square: {key} less", but(good, f"proof 6 concludes {key}", hair(old, -1)), "proof line 7", FEWER)
+        reject(f"square: a step leaves the region, {key}", but(good, f"proof 6 concludes {key}", hair(old, 1)), "proof line 11", LEAVES + "x")
+    for s, ends in (("x", ('["-17/8", "9"]', "[-9, 9]")), ("x", ('["-9", "17/8"]', "[-9, 9]")), ("y", ("[-9, 9]", '["-17/8", "9"]')), ("y", ("[-9, 9]", '["-9", "17/8"]'))):
+        edge = square(ends=ends).found("smaller ball", [("settles", "proved")], weighed("1"))
+        accept(f"square: the edge of {s} in {ends}", edge)
+        for sign in ("", "-"):
+            if f'"{sign}17/8"' in edge["claim"]["text"]:
+                changed = but(edge, "claim text", edge["claim"]["text"].replace(f'"{sign}17/8"', f'"{sign}(17/8 - 1{STEP})"'))
+                reject(f"square: beyond the edge of {s} in {ends}", changed, "proof line 11", LEAVES + s)
+    reject("square: no course", without(good, 11), "results", "results.set.kind: 'smaller ball' is claimed, None was derived")
+    for radius, phased in (("19/24", False), (hair("19/24", 1), True), ("1/2", False)):
+        for compared in (True, False):
+            asked = ["settles", "bound(x) <= 1/3", "bound(x) <= 19/24", f"bound(x) <= 19/24 - 1{STEP}", "bound(y) <= 5/48", "bound(y) <= 1/3", "bound(y) <= 19/24", f"bound(y) <= 19/24 - 1{STEP}", "bound <= 1/3", "bound <= 19/24", "push(x) > 0"]
+            verdicts = ["proved" if (phased and not (n == 4 and not compared)) or n in (2, 6, 9) else "undecided" for n in range(len(asked))]
+            d = square(radius, asked=asked, compared=compared)
+            entries = d.found("smaller ball", list(zip(asked, verdicts, strict=True)), weighed("1"))
+            judged(f"square of {radius[:6]} {len(radius)}, compared {compared}", entries)
+    # bounds by states alone: the largest of them is what a step leads on from
+    for b, phased in (("7/16", False), (hair("7/16", -1), True)):
+        asked = ["settles", f"bound(x) <= {b}", "bound(x) <= 1", f"bound(x) <= 1 - 2{STEP}", "bound(y) <= 5/48", f"bound(y) <= 1 - 2{STEP}", "bound(y) <= 1"]
+        verdicts = ["proved" if phased or n in (2, 6) else "undecided" for n in range(len(asked))]
+        entries = without(square(asked=asked).found("smaller ball", list(zip(asked, verdicts, strict=True)), weighed("1")), 13)
+        entries = but(entries, "proof 14 witness b", [b, "5/48"], "proof 14 concludes x", b)
+        judged(f"square by states, {phased}", entries)
+
+
+def rounds() -> None:
+    """proofs/horizon.md (5): a round has whole horizons, contracts by the gain of each, and shows the errors at their ends."""
+    up, still = {"p": "1/8", "q": "1/16"}, {"p": "0", "q": "0"}
+    found: dict[str, tuple[tuple[str, str], list[dict[str, str]], tuple[str, str]]] = {
+        "at rest": (("1/3", "5/48"), [up] * 2, ("1/3", "5/48")),
+        # from 0: to (1/4, 5/64), 5/16 in the norm, over 3/4; after four (5/16, 25/256), 25/64 over 15/16, with 1/4 on the way
+        "near": (("0", "0"), [up] * 2, ("-5/12", "-5/48")), "near, four steps": (("0", "0"), [up] * 4, ("-1/6", str(Q(5, 64) - Q(5, 48)))),
+        # x: 0, 1/3, 0; y: 1/3 (p/8 + q')... = 5/48 at the ends, 0 between
+        "alternating": (("0", "5/48"), [{"p": "1/8", "q": "0"}, {"p": "0", "q": "1/16"}], ("0", "5/48")), "the other way": (("1/3", "0"), [{"p": "0", "q": "1/16"}, {"p": "1/8", "q": "0"}], ("1/3", "0")),
+    }
+    for name, (start, steps, far) in found.items():
+        d = flat()
+        d.line("periodic", "periodic", [14, 12], {"bits": 0, "held": {}, "start": dict(zip("xy", start, strict=True)), "steps": steps}, x=far[0], y=far[1])
+        good = d.found("ball", [("settles", "proved")], weighed("4"))
+        accept(f"round {name}", good)
+        for s, x in zip("xy", far, strict=True):
+            reject(f"round {name}: {s} farther", but(good, f"proof 20 concludes {s}", hair(x, 1)), "proof line 21", f"{s}: more than what the orbit shows")
+        for n in (1, 3):
+            reject(f"round {name}: {n} steps", but(good, "proof 20 witness steps", [still] * n), "proof line 21", "steps: a whole number of horizons")
+        reject(f"round {name}: by the gain of one step", but(good, "proof 20 uses", [14, 9]), "proof line 21", "a periodic orbit rests on the invariant set, and the gain on it")
+
+
+def elsewhere() -> None:
+    """A requirement over ranges of its own has a course of its own."""
+    wanted = "radius(x) >= 1/2"
+    text = claim_of_two(*CROSSED, ends=('["-1/2", "1/2"]', "[-2, 2]"), uncertain=NOISE, asked=["settles", wanted], top="horizon = 2", rest="[metric]\nweights = { y = 4 }") + 'over = { p = ["-1/8", "1/8"] }\n'
+    d = flat()
+    d.text = text
+    first, d.prefix = len(d.proof), "over[2]:"
+    own = flat().proof[:14]
+    for line in own:
+        d.line(line["rule"], line["proves"], [n + first for n in line["uses"]], line["witness"], **line["concludes"])
+    good = without(d.found("ball", [("settles", "proved"), (wanted, "proved")], weighed("4")), first + 6)
+    judged("elsewhere", good)
+    at = next(n for n, line in enumerate(good["proof"]) if line["proves"] == "over[2]:course")
+    for n, uses in enumerate(([5, 9], [first + 5, 9], [5, good["proof"][at]["uses"][1]])):
+        reject(f"elsewhere: a course of other ranges {n}", but(good, f"proof {at} uses", uses), f"proof line {at + 1}", "uses: lines about other ranges")
+    reject("elsewhere: no course", without(good, at + 1), "results", "[2].verdict: proved is claimed, undecided was derived")
+    reject("elsewhere: the claim's own course alone", but(without(good, at + 1), "results requirements 1 verdict", "undecided"), "proof", "serves no later line and no result")
+
+
+@unit
+def what_is_put_together(checker: Any) -> None:
+    """Names at later steps; nothing is clipped in closed form, and in a stance it is."""
+    text = claim("v/2 + w + c + u", "[-1, 1]", 'w = [0, 1]\nc = { range = [0, 1], held = true, change = "1/2" }\nu = { range = [0, 1], held = true }', "c/4", top="horizon = 3")
+    d = derivation(checker, text)
+    domain = checker.derive.Domain(False, Q(0), (Q(0), Q(0)))
+    met = {name: [v.name for v in d.meaning(name, domain).variables] for name in ("image[v]", "slope@1[v,v]", "slope@2[v,v]", "slope[v,v]", "target-miss@1[v]", "target-miss[v]")}
+    assert met["image[v]"] == ["c", "u", "v", "w"] == met["slope@1[v,v]"]
+    assert met["slope@2[v,v]"] == ["c", "c@2", "u", "v", "w", "w@2"]
+    assert met["slope[v,v]"] == ["c", "c@2", "c@3", "u", "v", "w", "w@2", "w@3"]
+    assert met["target-miss@1[v]"] == ["c", "u", "w"]
+    ends = {v.name: (v.cells, v.inside) for v in d.meaning("slope[v,v]", domain).variables}
+    assert ends["c"] == (((Q(0), Q(1)),), (Q(0), Q(1))) and ends["c@3"] == (((Q(-1, 2), Q(1, 2)),), (Q(0), Q(0))) and ends["w@3"] == (((Q(0), Q(1)),), (Q(0), Q(1)))
+    terms = d.terms.all
+    assert not any(op in ("min", "max") for op, _, _ in terms)
+    x = d.terms.put("variable", (), "x")
+    assert d.stays(x, "v") == x
+    moving = derivation(checker, "horizon = 2\n" + stance())
+    y = moving.stays(moving.terms.put("variable", (), "y"), "v")
+    op, (inner, high), _ = moving.terms.all[y]
+    assert op == "min" and moving.terms.all[inner][0] == "max"
+    low, most = moving.region("v")[0]
+    assert moving.terms.all[high][2] == most and moving.terms.all[moving.terms.all[inner][1][1]][2] == low
+
+
+@unit
+def what_is_not_put_together(checker: Any) -> None:
+    """Signals within a stance, and held values of a list that change: of single steps alone."""
+    gust = stance(rates='x = "xd"\nxd = "16*x + gust"', uncertain="T = [0.4, 0.4]\nloss = [0, 0]\nv_cmd = { range = [0.5, 0.5], held = true }\ngust = { range = [0, 1], within = true }")
+    listed = claim("v/2 + w", "[-1, 1]", "w = { values = [0, 1], held = true, change = 1 }")
+    for text, reason in ((gust, "a signal within the stance is followed for one step at a time only"), (listed, "a held quantity of a finite list that changes is followed for one step")):
+        assert derivation(checker, text)
+        assert derivation(checker, "horizon = 1\n" + text)
+        with refuses(checker.calculus.Unprovable, f"horizon: {reason}"):
+            derivation(checker, "horizon = 2\n" + text)
+    for text in (listed.replace(", change = 1", ""), listed.replace("values = [0, 1]", "range = [0, 1]"), stance()):
+        assert derivation(checker, "horizon = 2\n" + text)
+
+
+@unit
+def what_has_to_stay_positive(checker: Any) -> None:
+    """Throughout the stances of all steps on the way, not of those from the set alone."""
+    results = checker.results
+    ball = checker.derive.Domain(True, Q(1), (Q(0), Q(0)))
+    wider = checker.derive.Domain(True, Q(2), (Q(0), Q(0)))
+    for domain, lower, ok in ((wider, Q(1), True), (wider, Q("1" + STEP), True), (ball, Q(1), False), (None, Q(1), False), (wider, Q(0), False)):
+        found = object.__new__(results.Results)
+        line = results.Line("range", "support[1]", (), {"lower": lower, "upper": Q(2)}, domain)
+        found.variant, found.needed, found.domain, found.way, found.proof = 0, set(), ball, wider, checker.rules.Proof(None, {1: line})
+        assert found.above(1) is ok and found.above(2) is False
+
+
+two_states()
+beyond_a_box()
+rounds()
+elsewhere()
+# fmt: on
+
+
+@pytest.mark.parametrize("name", CASES)
+def test_horizon_boundary(name: str) -> None:
+    CASES[name](ultibound.checker)
