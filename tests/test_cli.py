@@ -129,18 +129,13 @@ EXTRA
     ("asin(2*v)", "", "asin of a number beyond 1"),
     ("v/2 + a*b*c", "", "combinations"),
     ("v/2", "[[require]]\nthat = 'value(log(v))'", "logarithm"),
-    ("v/2", "horizon = 2", "horizon"),
     ("v/2", "route = 'sector'", "sector cannot be proved yet"),
     ("v/2", "route = 'split'", "name it in `correction`"),
 ])  # fmt: skip
 def test_what_cannot_be_used_is_said_in_one_line(next_: str, extra: str, said: str, tmp_path: Path) -> None:
     claim = tmp_path / "c.toml"
     text = BASE.replace("NEXT", next_)
-    text = (
-        extra + "\n" + text.replace("EXTRA", "")
-        if extra.startswith(("horizon", "route"))
-        else text.replace("EXTRA", extra)
-    )
+    text = extra + "\n" + text.replace("EXTRA", "") if extra.startswith("route") else text.replace("EXTRA", extra)
     many = ", ".join(str(k) for k in range(200))
     text = text.replace(
         "[next]", f"a = {{ values = [{many}] }}\nb = {{ values = [{many}] }}\nc = {{ values = [{many}] }}\n[next]"
@@ -150,6 +145,43 @@ def test_what_cannot_be_used_is_said_in_one_line(next_: str, extra: str, said: s
     assert done.returncode == 2, done
     assert said in done.stderr and len(done.stderr.strip().splitlines()) == 1 and "c.toml" in done.stderr
     assert list(tmp_path.iterdir()) == [claim]
+
+
+GUSTY = """
+format = 1
+horizon = 2
+[state]
+v = [0, 1]
+[uncertain]
+gust = { range = [-0.1, 0.1], within = true }
+[dynamics]
+duration = 0.4
+[dynamics.start]
+x = "-v/5"
+xd = "v"
+[dynamics.rate]
+x = "xd"
+xd = "15*x + gust"
+[next]
+v = "xd"
+[target]
+v = 0.5
+"""
+
+
+@pytest.mark.parametrize("text, said", [
+    (GUSTY, "horizon: a signal within the stance is followed for one step at a time only"),
+    ("horizon = 2" + BASE.replace("NEXT", "v/2").replace("EXTRA", "").replace("[next]", "h = { values = [0, 1], held = true, change = 1 }\n[next]"),
+     "horizon: a held quantity of a finite list that changes is followed for one step at a time only"),
+])  # fmt: skip
+def test_steps_that_are_not_taken_together(text: str, said: str, tmp_path: Path) -> None:
+    claim = tmp_path / "c.toml"
+    claim.write_text(text)
+    done = run_here("prove", claim)
+    assert done.returncode == 2 and "c.toml" in done.stderr
+    assert said in done.stderr and len(done.stderr.strip().splitlines()) == 1
+    claim.write_text(text.replace("horizon = 2", "horizon = 1"))
+    assert run_here("prove", claim, "-o", tmp_path / "c.json").returncode in (0, 1)
 
 
 def test_an_undefined_point_is_shown(tmp_path: Path) -> None:

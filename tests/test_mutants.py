@@ -16,6 +16,7 @@ from tests.checker import (
     test_absorbed_boundaries,
     test_boundaries,
     test_graph_boundaries,
+    test_horizon_boundaries,
     test_matrices,
     test_periodic_boundaries,
     test_product_boundaries,
@@ -33,6 +34,7 @@ PROOFS = (
     "results",
     "holding",
     "derive",
+    "horizon",
     "document",
     "__init__",
     "ranges",
@@ -66,17 +68,14 @@ def batteries(copies: Copies) -> dict[str, Battery]:
     """Of each module."""
     reading, stances = Battery(test_reading.CASES, 400), Battery(test_stance_boundaries.CASES)
     norms = Battery(test_matrices.CASES)
-    several = Battery(
-        test_several_boundaries.CASES
-        | test_periodic_boundaries.CASES
-        | test_product_boundaries.CASES
-        | test_absorbed_boundaries.CASES
-    )
+    horizon_cases = {f"horizon: {n}": q for n, q in test_horizon_boundaries.CASES.items()}
+    orbits = test_periodic_boundaries.CASES | test_product_boundaries.CASES | test_absorbed_boundaries.CASES
+    several = Battery(test_several_boundaries.CASES | orbits | horizon_cases)
     stance_cases = {f"stance: {n}": q for n, q in test_stance_boundaries.CASES.items()}
     graphs = Battery(test_graph_boundaries.CASES)
     several_cases = {f"several: {n}": q for n, q in test_several_boundaries.CASES.items()}
     graph_cases = {f"graph: {n}": q for n, q in test_graph_boundaries.CASES.items()}
-    proofs = Battery(test_boundaries.CASES | stance_cases | several_cases | graph_cases)
+    proofs = Battery(test_boundaries.CASES | stance_cases | several_cases | graph_cases | horizon_cases)
     of_norms, of_reading = dict.fromkeys(NORMS, norms), dict.fromkeys(READING, reading)
     of_several = dict.fromkeys(SEVERAL, several) | dict.fromkeys(GRAPHS, graphs)
     return dict.fromkeys(PROOFS, proofs) | dict.fromkeys(STANCES, stances) | of_norms | of_several | of_reading

@@ -851,9 +851,10 @@ def routes() -> None:
         text = claim("v/2 + w*f", requires=asked, top=top, rest="[define]\nf = 1")
         d = region(text)
         verdicts(f"correction, {name}", d, "region", [(asked[0], verdict), (asked[1], "refuted"), (asked[2], "proved")])
-    for top in ("horizon = 2", 'route = "sector"\ncorrection = ["f"]'):
-        changed = but(BASE, "claim text", claim(top=top, rest="[define]\nf = 1"))
-        reject(f"a claim of {top}", changed, "claim", "only the routes slope, split and curve over one step")
+    sector = but(BASE, "claim text", claim(top='route = "sector"\ncorrection = ["f"]', rest="[define]\nf = 1"))
+    reject("a claim of the route sector", sector, "claim", "only the routes slope, split and curve can be checked")
+    two = but(BASE, "claim text", claim(top="horizon = 2"))
+    reject("a claim of two steps", two, "proof line 5", "slope[v,v]: the range shown is wider than what is concluded")
     for top, route in (('route = "curve"', "curve"), ('route = "split"\ncorrection = ["f"]', "split")):
         changed = but(BASE, "claim text", claim(top=top, rest="[define]\nf = 1"))
         reject(f"a claim of {top}", changed, "results", f"results.route: 'slope' is claimed, '{route}' was derived")

@@ -133,7 +133,9 @@ class SeveralResults(Results):
     def lift(self, least: Fraction | None) -> None:
         super().lift(least)
         if self.settled and least is not None and not self.phased(least):
-            self.bounds = {s: self.metric.support(i) * self.lifted(least) for i, s in enumerate(self.states)}
+            far = self.lifted(least)
+            wide = {s: self.metric.support(i) for i, s in enumerate(self.states)}
+            self.bounds = {} if far is None else {s: x * far for s, x in wide.items()}
 
     def farthest(self, s: str) -> Fraction | None:
         """How far a periodic orbit surely takes a state, again and again: proofs/several.md (6)."""

@@ -92,12 +92,13 @@ def periodic(d: Derivation, proves: str, used: list[Line], witness: dict[str, An
         raise Rejected("concludes: a distance for each state")
     norm, course = domain.metric, Round(d, witness, flows)
     states, n = course.follow(), d.statement.horizon
-    if len(course.values) % n:
+    rounds, rest = divmod(len(course.values), n)
+    if rest:
         raise Rejected("steps: a whole number of horizons")
     if not course.starts_in(domain, states[0]):
         raise Rejected("start: not shown to be in the set")
     ends = [max(b[1] - a[0], a[1] - b[0]) for a, b in zip(states[0], states[-1], strict=True)]
-    near = norm.length(ends) / (1 - k ** (len(course.values) // n))
+    near = norm.length(ends) / (1 - k**rounds)
     for i, s in enumerate(d.states):
         errors = [(x[i][0] - course.centre[i][1], x[i][1] - course.centre[i][0]) for x in states[:-1:n]]
         if not claimed[s] <= max(map(nearest, errors)) - norm.support(i) * near:

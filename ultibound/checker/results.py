@@ -142,15 +142,16 @@ class Results:
             found.append(line.concludes["gain"] * start + line.concludes["residual"])
         return found
 
-    def lifted(self, error: Fraction) -> Fraction:
+    def lifted(self, error: Fraction) -> Fraction | None:
         """The largest error at any step, of one at the end of every horizon."""
-        return max(self.led(error) or [error])
+        return max(self.led(error) or (), default=None)
 
     def phased(self, bound: Fraction | None) -> bool:
         """Whether in the end every step starts in the set: proofs/horizon.md (3)."""
         if self.way == self.domain or bound is None:
             return True
-        return all(less(x, self.radius.lower) for x in self.led(bound) or [])
+        ends = self.led(bound)
+        return ends is not None and all(less(x, self.radius.lower) for x in ends)
 
     def lift(self, least: Fraction | None) -> None:
         """Bounds of all steps, where in the end not every step starts in the set."""
@@ -393,11 +394,9 @@ class Results:
         n = self.statement.horizon
         if n == 1:
             return self.count(name, error, wanted)
-        if self.led(error) is None:
-            return None
         far = self.lifted(error)
         kept = self.kind == "region" or less(far, self.radius.lower, equal=True)
-        rounds = self.count(name, far, wanted) if kept else None
+        rounds = self.count(name, far, wanted) if far is not None and kept else None
         return None if rounds is None else rounds * n
 
     def count(self, name: str, error: Fraction, wanted: Fraction) -> int | None:

@@ -201,9 +201,9 @@ def course(d: Derivation, proves: str, used: list[Line], claimed: Quantities) ->
         low, high = ball.targets[i] if ball.targets else ball.target
         _, inner = d.region(s)
         wide = Fraction(1) if ball.metric is None else ball.metric.support(i)
-        if not radius * wide <= min(low - inner[0], inner[1] - high):
+        if not outer * wide <= min(low - inner[0], inner[1] - high):  # from all of the set, which may reach to its R+
             raise Rejected(f"a step on the way is not shown to stay in the region of {s}")
-    return replace(ball, radius=radius, beyond=max(outer, radius) - radius)
+    return replace(ball, radius=radius, beyond=outer - radius)
 
 
 THEOREMS = {
