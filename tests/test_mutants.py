@@ -13,6 +13,7 @@ from collections.abc import Callable
 import pytest
 
 from tests.checker import (
+    test_absorbed_boundaries,
     test_boundaries,
     test_graph_boundaries,
     test_matrices,
@@ -43,7 +44,7 @@ PROOFS = (
 )
 STANCES = ("calculus", "motion", "signals", "models", "rates", "flows")
 NORMS = ("matrices",)
-SEVERAL = ("jacobians", "several", "outcomes", "periodic", "products")
+SEVERAL = ("jacobians", "several", "outcomes", "periodic", "products", "absorbed")
 GRAPHS = ("graph", "graph_outcomes")
 READING = ("grammar", "numerals", "statement", "tables", "scope", "command")
 SAMPLE, SEED = 20, 20260101
@@ -65,7 +66,12 @@ def batteries(copies: Copies) -> dict[str, Battery]:
     """Of each module."""
     reading, stances = Battery(test_reading.CASES, 400), Battery(test_stance_boundaries.CASES)
     norms = Battery(test_matrices.CASES)
-    several = Battery(test_several_boundaries.CASES | test_periodic_boundaries.CASES | test_product_boundaries.CASES)
+    several = Battery(
+        test_several_boundaries.CASES
+        | test_periodic_boundaries.CASES
+        | test_product_boundaries.CASES
+        | test_absorbed_boundaries.CASES
+    )
     stance_cases = {f"stance: {n}": q for n, q in test_stance_boundaries.CASES.items()}
     graphs = Battery(test_graph_boundaries.CASES)
     several_cases = {f"several: {n}": q for n, q in test_several_boundaries.CASES.items()}

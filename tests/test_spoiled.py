@@ -342,10 +342,11 @@ def test_what_signals_of_any_course_rest_on() -> None:
     parts = entries["proof"][number]["proves"]
     assert parts == "signal-slope[4]" and check(resealed(copy.deepcopy(entries))).status == "valid"
     for key, value, reason in (
-        ("proves", "signal-slope[1]", "signal-slope[1]: the range shown is wider than what is concluded"),
+        ("proves", "signal-slope[1]", "unknown form"),
+        ("witness", {"bits": 72, "trees": ["d"]}, f"{parts}: the range shown is wider than what is concluded"),
         ("proves", "signal-slope[100]", "signal-slope[100] is no obligation of this claim"),
         ("proves", "split-signal-slope[4]", "split-signal-slope[4] is no obligation of this claim"),
-        ("proves", "slope[v,v]", "proved"),
+        ("proves", "slope[v,v]", "unknown form"),
         ("uses", entries["proof"][number]["uses"][:1], "no trajectory is proved"),
         ("uses", entries["proof"][number]["uses"][1:], "needs a line that gives its set"),
     ):

@@ -7,10 +7,10 @@ from dataclasses import replace
 from fractions import Fraction
 from typing import Any
 
-from ..checker.graph import across, of_part
+from ..checker.graph import across, largest, of_part
 from ..checker.matrices import Leaf, Matrix, Metric
 from ..checker.rules import Proof, Rejected
-from ..checker.several import keyed, largest, moved, movements
+from ..checker.several import moved, movements
 from .lines import upward
 from .norms import NormWriter, solved, texts
 
@@ -59,7 +59,7 @@ class StepWriter(StanceWriter):
         """The largest entries of a matrix in a basis of each of the two stances."""
         found, _ = largest(leaves, (after[0], before[1]), proves)
         bases = {x: {"rows": texts(y[0]), "inverse": texts(y[1])} for x, y in (("before", before), ("after", after))}
-        concludes = {k: upward(x) for k, x in keyed(found).items()}
+        concludes = {k: upward(x) for k, x in found.items()}
         number = self._measured(
             "graph-entries", proves, on, {"bits": bits, "trees": list(trees), **bases}, concludes, None
         )
@@ -147,7 +147,7 @@ def least_above(
             for j, x in enumerate(k[s, t][i]):
                 table[rank[t, i]][rank[s, j]] = x
             right[rank[t, i]] = residual[s, t][i]
-        found = solved(tuple(map(tuple, table)), right)
+        (found,) = solved(tuple(map(tuple, table)), right)
         if found is None or min(found) < 0:
             return None
         b, better = found, False

@@ -9,20 +9,24 @@ from fractions import Fraction
 from math import exp, log
 from typing import Any
 
+import numpy as np
+
 from ..bounding.evaluate import to_float
 from ..checker.courses import nearest
 from ..checker.derive import Ranged
 from ..checker.jacobians import Table, inside, middle_and_half, named
-from ..checker.matrices import Leaf, Matrix, Metric, norm_over, root
+from ..checker.matrices import Leaf, Matrix, Metric, comparison, dot, norm_over, root
 from ..checker.numerals import decimal_down, decimal_up
 from ..checker.periodic import Round, variables_of
 from ..checker.products import traced
 from ..checker.reals import Undefined
 from ..checker.rules import Line, place
-from ..checker.several import compared, keyed, largest, movements
+from ..checker.several import compared, hull, keyed, middles, movements
 from .lines import IRRATIONAL, RATIONAL_CELLS, RATIONAL_TERMS, Writer, downward, upward
 
 DIGITS = 25
+MOST_EXACT = 8  # rows of a comparison solved in rationals
+SLACK = 1e-8
 NEARER = 1 - 1e-12
 
 
@@ -125,12 +129,15 @@ class NormWriter(Writer):
         return self._measured("matrix", proves, on, witness, {"norm": upward(most)}, None)
 
     def entries(
-        self, proves: str, trees: Sequence[str], bits: int, on: int, leaves: list[Leaf], basis: tuple[Matrix, Matrix]
-    ) -> int:
-        """The largest entries of a matrix in a basis over the set."""
-        found, _ = largest(leaves, basis, proves)
+        self, proves: str, trees: Sequence[str], bits: int, on: int, leaves: list[Leaf], basis: tuple[Matrix, Matrix],
+        beside: Matrix = (),
+    ) -> int:  # fmt: skip
+        """The largest entries of a matrix in a basis over the set, a matrix that vanishes on its rows beside it."""
+        low, high, _ = hull(leaves, basis, proves, beside)
         witness = {"bits": bits, "trees": list(trees), "rows": texts(basis[0]), "inverse": texts(basis[1])}
-        return self._measured("entries", proves, on, witness, {k: upward(x) for k, x in keyed(found).items()}, basis)
+        witness["beside"] = texts(beside)
+        ends = {k: downward(x) if k.startswith("-") else upward(x) for k, x in keyed(low, high).items()}
+        return self._measured("entries", proves, on, witness, ends, basis)
 
     def _measured(
         self,
@@ -231,15 +238,36 @@ class NormWriter(Writer):
     def componentwise(self, invariant: int, slopes: int, misses: int, moves: list[int]) -> int | None:
         """A bound for each state by comparison; None where the entries do not contract."""
         d, lines = self.derivation, self.proof.lines
-        k, residual = compared(d, lines[slopes], lines[misses], [lines[n] for n in moves])
-        p, b = solved(k, [Fraction(1)] * len(k)), solved(k, residual)
         basis = lines[slopes].basis
-        if p is None or b is None or basis is None or min(p) <= 0 or min(b) < 0:
+        if basis is None:
             return None
-        bounds = [sum((abs(x) * y for x, y in zip(row, b, strict=True)), Fraction(0)) for row in basis[1]]
+        about = self._resting(lines[slopes], lines[misses])
+        k, residual = compared(d, lines[slopes], lines[misses], [lines[n] for n in moves], about)
+        p, b = (solved if len(k) <= MOST_EXACT else nearly)(k, [Fraction(1)] * len(k), residual)
+        if p is None or b is None or not comparison(k, residual, p, b):
+            return None
+        bounds = [
+            abs(dot(row, about)) + sum((abs(x) * y for x, y in zip(row, b, strict=True)), Fraction(0))
+            for row in basis[1]
+        ]
         concludes = {s: upward(x) for s, x in zip(d.states, bounds, strict=True)}
-        witness = {"p": [str(x) for x in p], "b": [str(x) for x in b]}
+        witness = {key: [str(x) for x in each] for key, each in (("about", about), ("p", p), ("b", b))}
         return self.append("componentwise", "componentwise", [invariant, slopes, misses, *moves], witness, concludes)
+
+    def _resting(self, slopes: Line, misses: Line) -> list[Fraction]:
+        """About where the middle of the map rests, in a basis: any point would do."""
+        (middle, _), (miss, _) = (
+            middles(slopes, len(slopes.basis[0]) if slopes.basis is not None else 0),
+            middles(misses, 1),
+        )
+        a, m = (np.array([[to_float(x) for x in row] for row in each]) for each in (middle, miss))
+        try:
+            found = np.linalg.solve(np.eye(len(a)) - a, m[:, 0])
+        except np.linalg.LinAlgError:
+            found = np.full(len(a), np.nan)
+        if not np.isfinite(found).all():
+            return [Fraction(0)] * len(a)
+        return [Fraction(f"{x:.6g}") for x in found]
 
 
 def spelled(v: Ranged, x: Fraction) -> str:
@@ -263,20 +291,34 @@ def moves_of(writer: Writer) -> list[tuple[str, str]]:
     return movements(writer.derivation)
 
 
-def solved(k: Matrix, right: Sequence[Fraction]) -> list[Fraction] | None:
-    """(1 − K)⁻¹ applied, exactly; None where it has no inverse."""
+def solved(k: Matrix, *right: Sequence[Fraction]) -> list[list[Fraction] | None]:
+    """(1 − K)⁻¹ applied to each, exactly; None where it has no inverse."""
     n = len(k)
-    rows = [[(i == j) - x for j, x in enumerate(row)] + [right[i]] for i, row in enumerate(k)]
+    rows = [[(i == j) - x for j, x in enumerate(row)] + [r[i] for r in right] for i, row in enumerate(k)]
     for i in range(n):
         pivot = next((r for r in range(i, n) if rows[r][i]), None)
         if pivot is None:
-            return None
+            return [None] * len(right)
         rows[i], rows[pivot] = rows[pivot], rows[i]
         rows[i] = [x / rows[i][i] for x in rows[i]]
         for r in range(n):
             if r != i and rows[r][i]:
                 rows[r] = [x - rows[r][i] * y for x, y in zip(rows[r], rows[i], strict=True)]
-    return [row[n] for row in rows]
+    return [[row[n + c] for row in rows] for c in range(len(right))]
+
+
+def nearly(k: Matrix, *right: Sequence[Fraction]) -> list[list[Fraction] | None]:
+    """b with K b + r < b, a little above (1 − K)⁻¹ r >= 0; None where the floats give none that is not negative."""
+    rows, found = np.array([[to_float(x) for x in row] for row in k]), list[list[Fraction] | None]()
+    for each in right:
+        r = np.array([to_float(x) for x in each])
+        with suppress(np.linalg.LinAlgError):
+            b = np.linalg.solve(np.eye(len(k)) - rows, r * (1 + SLACK) + SLACK * r.max())
+            usable = np.isfinite(b).all() and b.min() >= 0
+            found.append([Fraction(f"{x:.12g}") for x in b * (1 + SLACK**2)] if usable else None)
+            continue
+        found.append(None)
+    return found
 
 
 def texts(m: Matrix) -> list[list[str]]:

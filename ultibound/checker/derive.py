@@ -60,6 +60,7 @@ class Domain:
     beyond: Fraction = Fraction(0)
     targets: tuple[Ends, ...] = ()
     metric: Metric | None = None
+    of: Domain | None = None  # of a box that trajectories end up in: the set they start in
 
     @property
     def outer(self) -> Fraction:

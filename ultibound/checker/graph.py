@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from collections.abc import Mapping
+from collections.abc import Iterable, Mapping
 from copy import copy
 from dataclasses import replace
 from fractions import Fraction
@@ -11,10 +11,10 @@ from typing import Any
 from .calculus import Unprovable
 from .derive import Derivation, Domain
 from .jacobians import Table
-from .matrices import Matrix, Metric, metric
+from .matrices import Leaf, Matrix, Metric, metric
 from .model import Statement
 from .numerals import Rejected
-from .several import ball, entered, gone_through, matrix, moved, movements, numbers, shown, stated, stretch
+from .several import ball, gone_through, hull, matrix, moved, movements, numbers, shown, stated, stretch
 from .theorems import Line, Quantities, parted, require
 
 MOST_STANCES = 16
@@ -310,6 +310,24 @@ def componentwise(
             if not claimed[f"{name}:{s}"] >= times(tuple(map(abs, row)), b[name]):
                 raise Rejected(f"{name}:{s}: less than what the comparison shows")
     return sets
+
+
+def entered(leaves: Iterable[Leaf], basis: tuple[Matrix, Matrix], proves: str, claimed: Quantities) -> int:
+    """How many leaves there are, every one within the entries that are claimed."""
+    found, count = largest(leaves, basis, proves)
+    if set(claimed) != set(found):
+        raise Rejected(f"{proves}: one conclusion an entry")
+    for key, x in found.items():
+        if not claimed[key] >= x:
+            raise Rejected(f"{proves}: entry {key} is less than what the leaves show")
+    return count
+
+
+def largest(leaves: Iterable[Leaf], basis: tuple[Matrix, Matrix], proves: str) -> tuple[Quantities, int]:
+    """The largest magnitude of every entry over all leaves, by row and column, and how many leaves there are."""
+    low, high, count = hull(leaves, basis, proves)
+    ends = [(i, j, low[i][j], high[i][j]) for i in range(len(low)) for j in range(len(low[i]))]
+    return {f"{i + 1},{j + 1}": max(-x, y) for i, j, x, y in ends}, count
 
 
 def entries(line: Line, rows: int, columns: int) -> Matrix:

@@ -42,10 +42,11 @@ SHAPES: dict[str, tuple[tuple[str, ...], tuple[str, ...] | None]] = {
     "ultimate-bound": ((), ("bound",)),
     "metric": (("inverse", "kind", "rows"), ()),
     "matrix": (("bits", "trees"), ("norm",)),
-    "entries": (("bits", "inverse", "rows", "trees"), None),  # one an entry
+    "entries": (("beside", "bits", "inverse", "rows", "trees"), None),  # two an entry
     "stretch": (("at", "bits", "direction"), ("lower",)),
-    "componentwise": (("b", "p"), None),  # one a state
+    "componentwise": (("about", "b", "p"), None),  # one a state
     "invariant-rows": ((), ()),
+    "absorbed": ((), None),  # one a state
     "periodic": (("bits", "held", "start", "steps"), None),  # one a state
     "graph-regions": ((), ()),
     "graph-balls": ((), ()),

@@ -59,7 +59,7 @@ class StanceSearch(SeveralAttempt):
 
     @property
     def room(self) -> list[float]:
-        found = [to_float(x) for x in self._rooms()]
+        found = [to_float(x) for x in self.rooms()]
         return [x if x > 0 else max(max(found), 0.0) or 1.0 for x in found]
 
     def led_into(self, afters: list[StanceSearch], gap: float) -> list[int] | None:
@@ -119,14 +119,14 @@ class StepSearch(SeveralAttempt):
         return self.after._shift(norm)
 
     def samples(self, domain: Domain, rng: np.random.Generator) -> Samples:
-        jacobians, misses = (self._sampled(self._matrices(x, domain), rng) for x in ("slopes", "misses"))
+        jacobians, misses = (self.sampled(self.matrices(x, domain), rng) for x in ("slopes", "misses"))
         return Samples(jacobians, misses[:, :, 0])
 
     def pair(self) -> tuple[float, float]:
         """Gain and residual over the ball of the stance (estimates); inf where they have no value."""
         found, domain = [], self.before.domain
         for proves in ("misses", "slopes"):
-            search = self._searched(proves, domain, self.before.norm, COARSE, FEW)
+            search = self.searched(proves, domain, self.before.norm, COARSE, FEW)
             self.needed = max(self.needed, search.leaves)
             found.append(search.upper)
         return found[1], found[0] + self._shift(self.after.norm)
