@@ -13,7 +13,9 @@ from collections.abc import Callable
 import pytest
 
 from tests.checker import (
+    test_absorbed_boundaries,
     test_boundaries,
+    test_graph_boundaries,
     test_horizon_boundaries,
     test_matrices,
     test_periodic_boundaries,
@@ -44,7 +46,8 @@ PROOFS = (
 )
 STANCES = ("calculus", "motion", "signals", "models", "rates", "flows")
 NORMS = ("matrices",)
-SEVERAL = ("jacobians", "several", "outcomes", "periodic", "products")
+SEVERAL = ("jacobians", "several", "outcomes", "periodic", "products", "absorbed")
+GRAPHS = ("graph", "graph_outcomes")
 READING = ("grammar", "numerals", "statement", "tables", "scope", "command")
 SAMPLE, SEED = 20, 20260101
 MOST_EQUIVALENT = 0.05
@@ -57,7 +60,7 @@ def copies() -> Copies:
 
 @pytest.fixture(scope="module")
 def found(copies: Copies) -> dict[str, list[Mutant]]:
-    return {m: mutants(m, copies.source[m]) for m in PROOFS + STANCES + NORMS + SEVERAL + READING}
+    return {m: mutants(m, copies.source[m]) for m in PROOFS + STANCES + NORMS + SEVERAL + GRAPHS + READING}
 
 
 @pytest.fixture(scope="module")
@@ -66,13 +69,15 @@ def batteries(copies: Copies) -> dict[str, Battery]:
     reading, stances = Battery(test_reading.CASES, 400), Battery(test_stance_boundaries.CASES)
     norms = Battery(test_matrices.CASES)
     horizon_cases = {f"horizon: {n}": q for n, q in test_horizon_boundaries.CASES.items()}
-    several_cases = {f"several: {n}": q for n, q in test_several_boundaries.CASES.items()}
-    orbits = test_periodic_boundaries.CASES | test_product_boundaries.CASES
+    orbits = test_periodic_boundaries.CASES | test_product_boundaries.CASES | test_absorbed_boundaries.CASES
     several = Battery(test_several_boundaries.CASES | orbits | horizon_cases)
     stance_cases = {f"stance: {n}": q for n, q in test_stance_boundaries.CASES.items()}
-    proofs = Battery(test_boundaries.CASES | stance_cases | several_cases | horizon_cases)
+    graphs = Battery(test_graph_boundaries.CASES)
+    several_cases = {f"several: {n}": q for n, q in test_several_boundaries.CASES.items()}
+    graph_cases = {f"graph: {n}": q for n, q in test_graph_boundaries.CASES.items()}
+    proofs = Battery(test_boundaries.CASES | stance_cases | several_cases | graph_cases | horizon_cases)
     of_norms, of_reading = dict.fromkeys(NORMS, norms), dict.fromkeys(READING, reading)
-    of_several = dict.fromkeys(SEVERAL, several)
+    of_several = dict.fromkeys(SEVERAL, several) | dict.fromkeys(GRAPHS, graphs)
     return dict.fromkeys(PROOFS, proofs) | dict.fromkeys(STANCES, stances) | of_norms | of_several | of_reading
 
 

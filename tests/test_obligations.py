@@ -12,16 +12,19 @@ from tests.corpus import CASES, Case
 from tests.stances import GAITS, PARTS
 from ultibound.checker.derive import Derivation
 from ultibound.checker.derive import Domain as CheckerDomain
+from ultibound.checker.graph import graph_of
 from ultibound.checker.matrices import metric
 from ultibound.checker.rules import SHAPES
 from ultibound.checker.statement import read_statement
 from ultibound.checker.theorems import THEOREMS
 from ultibound.claim import parse_claim
 from ultibound.claim.obligations import RANGED, Domain, Obligation, Obligations
-from ultibound.claim.provable import not_yet
+from ultibound.claim.provable import not_yet, of_stance
 
 PROOFS = Path(__file__).parents[1] / "proofs"
 PROVABLE = [c for c in CASES if c.accepted and not_yet(parse_claim(c.text, c.settings, c.data, "c")) is None]
+GRAPHS = [c for c in PROVABLE if "[stance." in c.text]
+PROVABLE = [c for c in PROVABLE if c not in GRAPHS]
 
 SEVERAL = {
     "a moving target": """format = 1
@@ -66,6 +69,31 @@ b = "target(a)"
 that = "value(u)"
 """,
 }
+MOVING = """format = 1
+[uncertain]
+c = { range = [0.1, 0.2], held = true, change = 0.01 }
+w = [-0.01, "sqrt(2)/100"]
+[next]
+x = "target(x)/2 - 0.4*v + c + w"
+v = "side*(c + target(x)) + 0.3*abs(v - target(v))"
+[stance.left]
+then = ["right", "left"]
+define = { side = "1" }
+state = { x = [-1, 1], v = [0, 1] }
+target = { x = "c", v = "c**2" }
+[stance.right]
+then = "left"
+define = { side = "-1" }
+state = { v = [-1, 0], x = [-1, 1] }
+target = { v = "-c", x = "c/2 - c**2" }
+[[require]]
+that = "value(v + c)"
+in = "right"
+[[require]]
+that = "sensitivity(v, x) < 1"
+over = { x = [0, 0.1] }
+"""
+GRAPHS.append(Case("moving targets, states in another order", MOVING, True))
 for several in SEVERAL:
     table = {"t.csv": "p,q,u\n0,0,1\n0,1,2\n0.5,0,2\n0.5,1,2\n1,0,1\n1,1,3\n"} if several == "a library" else {}
     PROVABLE.append(Case(f"several: {several}", SEVERAL[several], True, table))
@@ -186,8 +214,49 @@ def test_both_lists_mean_the_same_stance(name: str, horizon: int) -> None:
             same(obligation.root, meaning.root)
 
 
+@pytest.mark.parametrize("case", GRAPHS, ids=lambda c: c.name[:40])
+@pytest.mark.parametrize("ball", [False, True])
+def test_both_lists_mean_the_same_between_stances(case: Case, ball: bool) -> None:
+    """Each stance's own obligations, and the misses of every step, measured from the target of the stance after it."""
+    claim = parse_claim(case.text, case.settings, case.data, "c")
+    g = graph_of(read_statement(claim.text, claim.settings, claim.data))
+    assert g is not None and g.steps == [(s.name, t) for s in claim.stances for t in s.then]
+    for stance in claim.stances:
+        alone, d = of_stance(claim, stance.name), g.stances[stance.name]
+        o, n = Obligations(alone), len(d.states)
+        assert o.states == d.states == tuple(claim.stances[0].states)
+        assert [o.region(s) for s in o.states] == [d.region(s) for s in d.states]
+        spans = ((Fraction(1, 3), Fraction(1, 2)),) * n
+        one = tuple(tuple(Fraction(int(i == j)) for j in range(n)) for i in range(n))
+        mine = Domain(
+            "ball" if ball else "region", Fraction(1, 8), spans[0], Fraction(1, 16), spans, (Fraction(1),) * n
+        )
+        theirs = CheckerDomain(
+            ball, Fraction(1, 8), spans[0], beyond=Fraction(1, 16), targets=spans, metric=metric("box", one, one, n)
+        )
+        listed = [(d, q) for s in o.states for q in (o.target(s), o.image(s))]
+        listed += [(d, o.slope(mine, s, x)) for s in o.states for x in o.states]
+        listed += [(d, o.target_slope(h, s)) for s in o.states for h in o.moving(s)]
+        listed += [
+            (d, o.requirement(k, mine))
+            for k, r in enumerate(alone.requirements, 1)
+            if r.kind in RANGED and r.stance is None
+        ]
+        for t in stance.then:
+            after = next(s for s in claim.stances if s.name == t)
+            listed += [(g.between[f"{stance.name}>{t}"], o.miss(s, 0, after)) for s in o.states]
+        gates = [(x.op, x.args, x.value if x.op in ("number", "power") else x.name or None) for x in o.graph.gates]
+        for derivation, obligation in listed:
+            meaning = derivation.meaning(obligation.name, theirs)
+            assert obligation.by == meaning.by
+            assert [(v.name, v.cells, v.inside, v.listed) for v in obligation.variables] == [
+                (v.name, v.cells, v.inside, v.listed) for v in meaning.variables
+            ]
+            assert spelled_out(gates, obligation.root) == spelled_out(derivation.terms.all, meaning.root)
+
+
 def test_enough_claims_were_compared() -> None:
-    assert len(PROVABLE) > 60
+    assert len(PROVABLE) > 60 and len(GRAPHS) > 6
 
 
 def test_every_rule_has_its_page_and_every_page_is_listed() -> None:

@@ -187,8 +187,9 @@ def metrics_that_are_refused(m: Any) -> None:
     assert norm(m, "box", six).rows == six
     wrong = matrix([1, 0, 0], [0, 1, HAIR])
     refused(m, "the kind is", lambda: m.metric("ball", one, one, 2))
-    refused(m, "2 to 6 states", lambda: m.metric("box", matrix([1]), matrix([1]), 1))
-    refused(m, "2 to 6 states", lambda: m.metric("box", diagonal(*[1] * 7), diagonal(*[1] * 7), 7))
+    assert norm(m, "box", matrix([2])).rows == matrix([2])
+    refused(m, "1 to 6 states", lambda: m.metric("box", (), (), 0))
+    refused(m, "1 to 6 states", lambda: m.metric("box", diagonal(*[1] * 7), diagonal(*[1] * 7), 7))
     refused(m, "1 to 64 rows", lambda: m.metric("polytope", (), ((), ()), 2))
     many = matrix(*([1, 0], [0, 1]) * 33)
     few, some = matrix([1, *[0] * 63], [0, 1, *[0] * 62]), matrix([1, *[0] * 64], [0, 1, *[0] * 63])
@@ -431,14 +432,40 @@ def entries_at_equality(m: Any) -> None:
     left = inverse(v)
     a = leaf(m, diagonal(2, -1), [diagonal(0, 3), nothing(2, 2)], diagonal(Q(1, 2), 0))
     # V A L = [[1, 1], [2, 0]], V G L = [[1, -1], [-2, 2]], |V| rest |L| = 1/2 [[2/3, 1/3], [2/3, 1/3]]
-    assert m.entries(v, left, a) == matrix([2 + Q(1, 3), 2 + Q(1, 6)], [4 + Q(1, 3), 2 + Q(1, 6)])
-    assert m.entries(v, None, a) == matrix([2 + Q(1, 2), 4], [2 + Q(1, 2), 8])
-    assert m.entries(diagonal(1, 1), None, a) == matrix([Q(5, 2), 0], [0, 4])
-    assert m.entries(v, None, leaf(m, matrix([1], [-1]), [matrix([-1], [Q(1, 3)])], matrix([0], [Q(1, 4)]))) == matrix(
-        [Q(2, 3) + Q(1, 4)], [3 + Q(5, 3) + Q(1, 2)]
+    most = matrix([2 + Q(1, 3), 2 + Q(1, 6)], [4 + Q(1, 3), 2 + Q(1, 6)])
+    least = matrix([-Q(1, 3), -Q(1, 6)], [-Q(1, 3), -2 - Q(1, 6)])
+    assert m.entries(v, left, a) == (least, most)
+    assert m.entries(v, None, a) == (
+        matrix([2 - Q(1, 2), -4], [2 - Q(1, 2), -4]),
+        matrix([2 + Q(1, 2), 2], [2 + Q(1, 2), 8]),
+    )
+    assert m.entries(diagonal(1, 1), None, a) == (matrix([Q(3, 2), 0], [0, -4]), matrix([Q(5, 2), 0], [0, 2]))
+    one = leaf(m, matrix([1], [-1]), [matrix([-1], [Q(1, 3)])], matrix([0], [Q(1, 4)]))
+    spread = matrix([Q(2, 3) + Q(1, 4)], [Q(5, 3) + Q(1, 2)])
+    assert m.entries(v, None, one) == (
+        matrix([-spread[0][0]], [3 - spread[1][0]]),
+        matrix([spread[0][0]], [3 + spread[1][0]]),
     )
     ten = [diagonal(1, 2)] * 10
-    assert m.entries(diagonal(1, 1), diagonal(1, 1), leaf(m, diagonal(-1, 0), ten)) == diagonal(11, 20)
+    assert m.entries(diagonal(1, 1), diagonal(1, 1), leaf(m, diagonal(-1, 0), ten)) == (
+        diagonal(-11, -20),
+        diagonal(9, 20),
+    )
+    # Z beside it, over another denominator
+    z = matrix([Q(1, 7), -2], [0, Q(3, 5)])
+    for ends, plain in zip(m.entries(v, left, a, z), (least, most), strict=True):
+        assert ends == tuple(tuple(map(sum, zip(*rows, strict=True))) for rows in zip(plain, z, strict=True))
+
+
+@question
+def what_vanishes(m: Any) -> None:
+    rows = matrix([1, 0], [0, 1], [Q(1, 3), -2])
+    for z, good in (
+        (nothing(3, 3), True), (matrix([-Q(1, 3), 2, 1], [0, 0, 0], [0, 0, 0]), True), (matrix([0, 0, 0], [-1, 6, 3], [Q(1, 3), -2, -1]), True),
+        (matrix([-Q(1, 3) + HAIR, 2, 1], [0, 0, 0], [0, 0, 0]), False), (matrix([0, 0, 0], [0, 0, 0], [0, 0, HAIR]), False), (matrix([0, 0, 0], [0, HAIR, 0], [0, 0, 0]), False),
+    ):  # fmt: skip
+        assert m.vanishes(z, rows) is good
+    assert m.times([[1, 2], [3, 4]], [[0, 1], [0, 5]]) == [[0, 11], [0, 23]]
 
 
 @question
@@ -533,9 +560,10 @@ def against_singular_values(m: Any) -> None:
             assert m.norm_at_most(norm(m, kind, v), of, near * (1 + Q(1, 10**8))) and not m.norm_at_most(
                 norm(m, kind, v), of, near * (1 - Q(1, 10**8))
             )
-        least = numbers(m.entries(v, left if columns > 1 else None, of))
-        assert (np.max([np.abs(b) for b in samples], axis=0) <= least + 1e-12).all()
-        assert np.allclose(least, np.max([np.abs(b) for b in at_corners], axis=0) + wide, atol=1e-12)
+        low, high = map(numbers, m.entries(v, left if columns > 1 else None, of))
+        assert (np.max(samples, axis=0) <= high + 1e-12).all() and (low - 1e-12 <= np.min(samples, axis=0)).all()
+        assert np.allclose(high, np.max(at_corners, axis=0) + wide, atol=1e-12)
+        assert np.allclose(low, np.min(at_corners, axis=0) - wide, atol=1e-12)
 
 
 @question

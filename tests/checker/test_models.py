@@ -7,6 +7,7 @@ from collections.abc import Callable
 from fractions import Fraction as Q
 from itertools import product
 from math import factorial
+from typing import Any
 
 import mpmath
 import pytest
@@ -237,24 +238,24 @@ def test_functions(op: str, radius: Q) -> None:
     assert all(r <= small for r in found.rest), [r / m.unit for r in found.rest]
     with mpmath.workdps(60):
 
-        def off(s: Q, a: mpmath.mpf, b: mpmath.mpf) -> mpmath.mpf:
-            def real(p: Powers) -> mpmath.mpf:
-                return mpmath.fsum(
-                    mpmath.mpf(c.numerator)
-                    / c.denominator
-                    * (mpmath.mpf(s.numerator) / s.denominator) ** k
-                    * a**i
-                    * b**j
-                    for (k, i, j), c in p.items()
-                )
-
-            return call(real(exact)) - real(stated)
+        def over(p: Powers, s: Q) -> Callable[[mpmath.mpf, mpmath.mpf], mpmath.mpf]:
+            """A polynomial at one time, of the two coordinates."""
+            parts: dict[tuple[int, int], Q] = {}
+            for (k, i, j), c in p.items():
+                parts[i, j] = parts.get((i, j), Q(0)) + c * s**k
+            column = [(i, j, mpmath.mpf(c.numerator) / c.denominator) for (i, j), c in parts.items()]
+            return lambda a, b: mpmath.fsum(c * a**i * b**j for i, j, c in column)
 
         for s, a, b in points(rng, 3, 6):
+            inside, outside = over(exact, s), over(stated, s)
             p = [mpmath.mpf(y.numerator) / y.denominator for y in (a, b)]
+
+            def off(a: mpmath.mpf, b: mpmath.mpf, f: Any = inside, g: Any = outside) -> mpmath.mpf:
+                return call(f(a, b)) - g(a, b)
+
             for o, bound in zip(m.orders, found.rest, strict=True):
                 taken = (o.count(0), o.count(1))
-                slope = mpmath.diff(lambda u, w, s=s: off(s, u, w), p, taken) if o else off(s, *p)
+                slope = mpmath.diff(off, p, taken) if o else off(*p)
                 assert abs(slope) * m.unit <= bound + mpmath.mpf(10) ** -10, (op, o)
 
 

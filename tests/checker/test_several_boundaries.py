@@ -80,14 +80,14 @@ class Lines(Draft):
     def table(self, proves: str, values: Sequence[str], uses: Sequence[int], rows: Any = ONE, inverse: Any = ONE, trees: Sequence[str] = ("d",)) -> int:
         """`entries`: row by row."""
         wide = len(rows) if proves == "slopes" else 1
-        found = {f"{i // wide + 1},{i % wide + 1}": x for i, x in enumerate(values)}
-        return self.line("entries", proves, uses, {"bits": 0, "trees": list(trees), "rows": rows, "inverse": inverse}, **found)
+        found = both({f"{i // wide + 1},{i % wide + 1}": x for i, x in enumerate(values)})
+        return self.line("entries", proves, uses, {"beside": [], "bits": 0, "trees": list(trees), "rows": rows, "inverse": inverse}, **found)
 
     def stretch(self, proves: str, at: dict[str, str], direction: Sequence[str], lower: str, uses: Sequence[int], bits: int = 0) -> int:
         return self.line("stretch", proves, uses, {"at": at, "bits": bits, "direction": list(direction)}, lower=lower)
 
     def compared(self, uses: Sequence[int], p: Sequence[str], b: Sequence[str], x: str, y: str) -> int:
-        return self.line("componentwise", "componentwise", uses, {"p": list(p), "b": list(b)}, x=x, y=y)
+        return self.line("componentwise", "componentwise", uses, {"about": ["0"] * len(p), "p": list(p), "b": list(b)}, x=x, y=y)
 
     def found(self, kind: str | None, asked: Sequence[tuple[str, str]], metric: dict[str, Any], sensitivities: Sequence[Any] = ()) -> Entries:
         entries = self.entries(kind, asked, sensitivities, "x")
@@ -97,6 +97,11 @@ class Lines(Draft):
             results["set"]["centre"]["y"] = None
         results["metric"] = metric
         return entries
+
+
+def both(upper: dict[str, str]) -> dict[str, str]:
+    """Entries with the lower ends opposite to the upper ones."""
+    return upper | {f"-{at}": str(-Q(x)) for at, x in upper.items()}
 
 
 BOX = {"kind": "box", "weights": {"x": "1", "y": "2"}}
@@ -362,7 +367,7 @@ def on_ball() -> None:
     tight("ball by rows", rows, {
         6: (("radius", 1, "radius: the ball is not shown to lie in the region of x"), ("outer", -1, "outer: larger balls are not shown to leave the region")),
         7: (("lower", 1, WIDER),), 8: (("norm", -1, "slopes: a leaf is not shown to stay within the norm"),), 9: (("norm", -1, "misses: a leaf"),), 10: (("gain", -1, "gain or residual"), ("residual", -1, "gain or residual")),
-        11: tuple((f"{i},{j}", -1, f"slopes: entry {i},{j} is less") for i in (1, 2) for j in (1, 2)), 12: tuple((f"{i},1", -1, f"misses: entry {i},1 is less") for i in (1, 2)),
+        11: tuple((at, -1 if at[0] != "-" else 1, f"slopes: entry {at} is less") for at in ("1,1", "2,1", "-2,2")), 12: tuple((f"{i},1", -1, f"misses: entry {i},1 is less") for i in (1, 2)),
         14: (("bound", -1, "bound: less than"),), 18: (("lower", 1, "slopes: the direction"),), 19: (("lower", 1, "misses: the direction"),),
     })
     # invariant exactly: 3/4 2 + 1/2, or 1/2 2 + 1/4 2 + 1/2
@@ -510,7 +515,7 @@ def malformed() -> None:
     reject("slopes and misses in different bases", but(moving, "proof 17 uses", [14, 16, 13, 9, 10]), "proof line 18", "entries in different bases")
     reject("misses and slopes in different bases", but(moving, "proof 17 uses", [14, 12, 17, 9, 10]), "proof line 18", "entries in different bases")
     for n in (11, 12):
-        reject(f"rows in another basis, {n}", but(rows, f"proof {n - 1} witness rows", ONE, f"proof {n - 1} witness inverse", ONE, f"proof {n - 1} concludes", {"1,1": "1/2", "1,2": "1", "2,1": "1", "2,2": "1"} if n == 11 else {"1,1": "1", "2,1": "1"}), "proof line 13", "entries of another set, or in another basis")
+        reject(f"rows in another basis, {n}", but(rows, f"proof {n - 1} witness rows", ONE, f"proof {n - 1} witness inverse", ONE, f"proof {n - 1} concludes", both({"1,1": "1/2", "1,2": "1", "2,1": "1", "2,2": "1"} if n == 11 else {"1,1": "1", "2,1": "1"})), "proof line 13", "entries of another set, or in another basis")
     # shapes of witnesses
     for path, value, n, reason in (
         ("8 witness trees", "d", 9, "trees: a list of texts"), ("8 witness trees", [1], 9, "trees: a list of texts"), ("8 witness trees", None, 9, "trees: a list of texts"), ("8 witness trees", [], 9, "0 trees for 1 cells"), ("8 witness trees", ["d", "d"], 9, "2 trees for 1 cells"),
@@ -519,7 +524,7 @@ def malformed() -> None:
         ("12 witness trees", ["0 d"], 13, "a tree ends before"), ("12 witness rows", "1", 13, "rows: a list of rows"), ("12 witness rows", ["1", "0"], 13, "rows: a list of rows"), ("12 witness rows", [["1", "0"]], 13, "the inverse has one row for each state"), ("12 witness inverse", None, 13, "inverse: a list of rows"),
         ("12 witness inverse", [["1", "0"], ["1", "1"]], 13, "the inverse times the matrix is not 1"), ("12 witness rows", [[1, "0"], ["0", "1"]], 13, "rows: a proved number is written as text"), ("0 witness kind", "ball", 1, "the kind is one of box, polytope, ellipsoid"), ("0 witness kind", ["box"], 1, "the kind is one of"),
         ("0 witness kind", "polytope", 1, "rows: the weight of x is not the one the claim states, exactly"), ("0 witness rows", [["1", "1"], ["0", "2"]], 1, "a box has positive weights"), ("0 witness inverse", ONE, 1, "the inverse times the matrix is not 1"),
-        ("12 concludes 1,2", GONE, 13, "slopes: entry 1,2 is less than what the leaves show"), ("12 concludes 3,1", "1", 13, "slopes: one conclusion an entry"), ("13 concludes 1,2", "1", 14, "misses: one conclusion an entry"), ("13 concludes 2,1", GONE, 14, "misses: entry 2,1 is less"), ("14 concludes z", "1", 15, "concludes: a bound for each state"),
+        ("12 concludes 1,2", GONE, 13, "slopes: two conclusions an entry"), ("12 concludes 3,1", "1", 13, "slopes: two conclusions an entry"), ("12 concludes -1,2", GONE, 13, "slopes: two conclusions an entry"), ("13 concludes 1,2", "1", 14, "misses: two conclusions an entry"), ("13 concludes 2,1", GONE, 14, "misses: two conclusions an entry"), ("14 concludes z", "1", 15, "concludes: a bound for each state"),
         ("14 concludes y", GONE, 15, "concludes: a bound for each state"), ("14 witness p", ["2"], 15, "p: a list of 2 numbers"), ("14 witness p", ["2", "1", "1"], 15, "p: a list of 2 numbers"), ("14 witness b", "11", 15, "b: a list of 2 numbers"), ("14 witness b", [1, 1], 15, "b: a proved number is written as text"),
         ("14 witness p", ["1", "2"], 15, "p, b: K p < p"), ("14 witness p", ["1", "1/3"], 15, "p, b: K p < p"), ("14 witness p", ["0", "0"], 15, "p, b: K p < p"), ("14 witness p", ["-1", "-1"], 15, "p, b"), ("14 witness b", ["7/20", hair("1/5", -1)], 15, "p, b"), ("14 witness b", [hair("7/20", -1), "1/5"], 15, "p, b"),
         ("15 witness direction", ["1"], 16, "direction: a list of 2 numbers"), ("15 witness direction", ["1", "1", "1"], 16, "direction: a list of 2"), ("15 witness direction", "11", 16, "direction: a list of 2"), ("15 witness direction", ["0", "0"], 16, "slopes: the direction is not shown to be stretched by so much"),
@@ -783,12 +788,12 @@ def other_sets() -> None:
         reject(f"a stretch over another set, {n}", but(PLAIN, f"proof {n - 1} uses", [5], "proof 15 witness at y", "0"), "proof", f"line {n} serves no later line and no result")
     # a comparison over the ball that is mapped into itself, where the region is the set
     two = PLAIN["proof"]
-    ball_ = [{"rule": "entries", "proves": of, "uses": [5], "witness": {**two[12]["witness"], "rows": WEIGHTS, "inverse": UNWEIGHTED}, "concludes": values}
+    ball_ = [{"rule": "entries", "proves": of, "uses": [5], "witness": {**two[12]["witness"], "rows": WEIGHTS, "inverse": UNWEIGHTED}, "concludes": both(values)}
              for of, values in (("slopes", {"1,1": "1/2", "1,2": "1/8", "2,1": "1/2", "2,2": "1/4"}), ("misses", {"1,1": "1/8", "2,1": "1/8"}))]
     rows = {"rule": "invariant-rows", "proves": "invariant", "uses": [5, 19, 20], "witness": {}, "concludes": {}}
-    compared = {**two[14], "uses": [21, 19, 20], "witness": {"p": ["1", "1"], "b": ["1/2", "1/2"]}, "concludes": {"x": "1/2", "y": "1/4"}}
+    compared = {**two[14], "uses": [21, 19, 20], "witness": {"about": ["0", "0"], "p": ["1", "1"], "b": ["1/2", "1/2"]}, "concludes": {"x": "1/2", "y": "1/4"}}
     reject("a comparison over another set", without(but(PLAIN, "proof", [*two, *ball_, rows, compared]), 13, 14, 15), "results", "the comparison refers to another set")
-    accept("a comparison over the ball", but(without(but(PLAIN, "proof", [*two, *ball_, rows, {**compared, "concludes": {"x": "7/20", "y": "1/5"}, "witness": {"p": ["1", "1"], "b": ["7/20", "2/5"]}}]), 8, 9, 10, 11, 12, 13, 14, 15, 6, 7, 16, 17, 18),
+    accept("a comparison over the ball", but(without(but(PLAIN, "proof", [*two, *ball_, rows, {**compared, "concludes": {"x": "7/20", "y": "1/5"}, "witness": {"about": ["0", "0"], "p": ["1", "1"], "b": ["7/20", "2/5"]}}]), 8, 9, 10, 11, 12, 13, 14, 15, 6, 7, 16, 17, 18),
                                             "results set kind", "smaller ball", "results requirements 0 verdict", "undecided"))
     reject("an invariant ball by a pair of the region", but(PLAIN, "proof 17", {"rule": "invariant-ball", "proves": "invariant", "uses": [5, 11], "witness": {}, "concludes": {}}), "proof line 18", "the gain refers to another set")
 

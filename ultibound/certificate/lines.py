@@ -14,6 +14,7 @@ from ..checker.derive import Derivation, Domain, Meaning
 from ..checker.exact import Exact
 from ..checker.flows import Flows, trajectory
 from ..checker.forms import enclose, walk
+from ..checker.graph import seen_from
 from ..checker.numerals import decimal_down, decimal_up
 from ..checker.ranges import Evaluator
 from ..checker.reals import Scaled, Undefined
@@ -34,6 +35,8 @@ IRRATIONAL = frozenset(
 class Writer:
     """Lines of one proof, each with the number it got; domains are those the checker derives."""
 
+    part = ""  # the stance, or the step from one to the next, that the lines are about (graph.py)
+
     def __init__(self, claim: Claim, derivation: Derivation | None = None) -> None:
         """`derivation`: of a requirement with ranges of its own; else of the claim's text."""
         self.derivation = derivation or Derivation(read_statement(claim.text, claim.settings, claim.data))
@@ -42,7 +45,11 @@ class Writer:
         self.flow: int | None = None  # the line of the stance's flow
 
     def domain(self, number: int | None) -> Domain | None:
-        return None if number is None else self.proof.lines[number].domain
+        return None if number is None else seen_from(self.part, self.proof.lines[number]).domain
+
+    def named(self, proves: str) -> str:
+        """What a line proves, and of which stance or step."""
+        return f"{self.part}:{proves}" if self.part else proves
 
     def range(self, proves: str, trees: tuple[str, ...], bits: int, on: int | None) -> tuple[Fraction, Fraction]:
         """Ends shown by a splitting tree; raises checker.reals.Undefined where a leaf has none."""
@@ -102,11 +109,12 @@ class Writer:
         concludes = {"lower": low[0], "upper": high[0]}
         meaning = self.derivation.meaning(proves, self.domain(on))
         uses = uses + self._flow(meaning.root)
-        line = {"rule": rule, "proves": proves, "uses": uses, "witness": witness, "concludes": concludes}
+        line = {"rule": rule, "proves": self.named(proves), "uses": uses, "witness": witness, "concludes": concludes}
         self.raw.append(line)
         number = len(self.raw)
+        claimed = {"lower": low[1], "upper": high[1]}
         self.proof.lines[number] = Line(
-            rule, proves, tuple(uses), {"lower": low[1], "upper": high[1]}, self.domain(on), meaning.on_set
+            rule, proves, tuple(uses), claimed, self.domain(on), meaning.on_set, part=self.part
         )
         return number
 
@@ -120,12 +128,13 @@ class Writer:
     def trajectory(self, witness: dict[str, Any], flows: Flows) -> None:
         """Appends the flow of the stance, with the error that was proved."""
         concludes = {"error": upward(flows.error)}
+        proves = self.named("flow")
         self.raw.append(
-            {"rule": "trajectory", "proves": "flow", "uses": [], "witness": witness, "concludes": concludes}
+            {"rule": "trajectory", "proves": proves, "uses": [], "witness": witness, "concludes": concludes}
         )
         self.flow = len(self.raw)
         claimed = {"error": Fraction(concludes["error"])}
-        self.proof.lines[self.flow] = Line("trajectory", "flow", (), claimed, flows=flows)
+        self.proof.lines[self.flow] = Line("trajectory", "flow", (), claimed, flows=flows, part=self.part)
 
     def _flow(self, root: int | None) -> list[int]:
         """The line of the flow, where a term (or a course) rests on it."""

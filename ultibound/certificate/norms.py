@@ -9,20 +9,24 @@ from fractions import Fraction
 from math import exp, log
 from typing import Any
 
+import numpy as np
+
 from ..bounding.evaluate import to_float
 from ..checker.courses import nearest
 from ..checker.derive import Ranged
 from ..checker.jacobians import Table, inside, middle_and_half, named
-from ..checker.matrices import Leaf, Matrix, Metric, norm_over, root
+from ..checker.matrices import Leaf, Matrix, Metric, comparison, dot, norm_over, root
 from ..checker.numerals import decimal_down, decimal_up
 from ..checker.periodic import Round, variables_of
 from ..checker.products import traced
 from ..checker.reals import Undefined
 from ..checker.rules import Line, place
-from ..checker.several import compared, keyed, largest, movements
+from ..checker.several import compared, hull, keyed, middles, movements
 from .lines import IRRATIONAL, RATIONAL_CELLS, RATIONAL_TERMS, Writer, downward, upward
 
 DIGITS = 25
+MOST_EXACT = 8  # rows of a comparison solved in rationals
+SLACK = 1e-8
 NEARER = 1 - 1e-12
 
 
@@ -60,13 +64,13 @@ class NormWriter(Writer):
         self, rule: str, proves: str, uses: list[int], witness: dict[str, Any], concludes: dict[str, str]
     ) -> int:
         """A line the checker goes through at once; raises checker.rules.Rejected where it does not hold."""
-        line = {"rule": rule, "proves": proves, "uses": uses, "witness": witness, "concludes": concludes}
+        line = {"rule": rule, "proves": self.named(proves), "uses": uses, "witness": witness, "concludes": concludes}
         self.proof.add(line)
         self.raw.append(line)
         return len(self.raw)
 
-    def about(self, metric: int, targets: Sequence[int], radius: Fraction) -> int:
-        """The ball of a metric about the targets, the largest in the region as far as points of the targets show."""
+    def about(self, metric: int, targets: Sequence[int], radius: Fraction, largest: bool = True) -> int:
+        """The ball of a metric about the targets; the largest in the region as far as points of the targets show."""
         d, norm = self.derivation, self.proof.lines[metric].metric
         edges = []
         for i, s in enumerate(d.states):
@@ -74,10 +78,10 @@ class NormWriter(Writer):
             row = norm.inverse[i] if norm is not None else ()
             wide = sum(x * x for x in row) if norm is not None and norm.kind == "ellipsoid" else sum(map(abs, row)) ** 2
             for n, x in self.proof.lines.items():
-                if (x.rule, x.proves) == ("point", f"target[{s}]"):
+                if (x.part, x.rule, x.proves) == (self.part, "point", f"target[{s}]"):
                     edge = min(high - x.concludes["lower"], x.concludes["upper"] - low)
                     edges.append((max(edge, Fraction(0)) ** 2 / wide, n))
-        if not edges:
+        if not edges or not largest:
             return self.append("smaller-ball", "ball", [metric, *targets], {}, {"radius": downward(radius)})
         square, nearest = min(edges)
         outer = Fraction(decimal_up(root(square)[1], DIGITS))
@@ -86,7 +90,7 @@ class NormWriter(Writer):
 
     def exact(self, proves: str, on: int) -> bool:
         """Whether exact rational arithmetic can carry all entries of a matrix, and is worth it."""
-        d, domain = self.derivation, self.proof.lines[on].domain
+        d, domain = self.derivation, self.domain(on)
         names = [name for row in named(d, proves) for name in row]
         below = {k for name in names for k in d.terms.below(d.meaning(name, domain).root)}
         cells = 1
@@ -98,29 +102,26 @@ class NormWriter(Writer):
 
     def matrix_seconds(self, proves: str, bits: int, on: int) -> float:
         """How long one leaf of a matrix takes in the checker's arithmetic: the first cell, the second time round."""
-        domain, began = self.proof.lines[on].domain, time.monotonic()
-        if domain is None or domain.metric is None:
+        domain, began, (_, norm) = self.domain(on), time.monotonic(), self.seen(proves, on)
+        if domain is None:
             raise ValueError("no set")
         with suppress(Undefined):
             table = Table(self.derivation, proves, domain, bits, self._flows())
             for _ in range(2):
                 began = time.monotonic()
-                norm_over(domain.metric, table.leaf([v.cells[0] for v in table.variables], "c"))
+                norm_over(norm, table.leaf([v.cells[0] for v in table.variables], "c"))
         return time.monotonic() - began
 
     def leaves(self, proves: str, trees: Sequence[str], bits: int, on: int) -> list[Leaf]:
         """The leaves of a matrix over the set; raises checker.reals.Undefined where one has no enclosure."""
-        domain = self.proof.lines[on].domain
+        domain = self.domain(on)
         if domain is None:
             raise ValueError("no set")
         return list(Table(self.derivation, proves, domain, bits, self._flows()).leaves(list(trees)))
 
     def matrix(self, proves: str, trees: Sequence[str], bits: int, on: int, leaves: list[Leaf]) -> int:
         """The norm of a matrix over the set, as its leaves show it."""
-        domain = self.proof.lines[on].domain
-        norm: Metric | None = None if domain is None else domain.metric
-        if norm is None:
-            raise ValueError("no metric")
+        _, norm = self.seen(proves, on)
         most = Fraction(0)
         for leaf in leaves:
             most = norm_over(norm, leaf, most)
@@ -128,12 +129,15 @@ class NormWriter(Writer):
         return self._measured("matrix", proves, on, witness, {"norm": upward(most)}, None)
 
     def entries(
-        self, proves: str, trees: Sequence[str], bits: int, on: int, leaves: list[Leaf], basis: tuple[Matrix, Matrix]
-    ) -> int:
-        """The largest entries of a matrix in a basis over the set."""
-        found, _ = largest(leaves, basis, proves)
+        self, proves: str, trees: Sequence[str], bits: int, on: int, leaves: list[Leaf], basis: tuple[Matrix, Matrix],
+        beside: Matrix = (),
+    ) -> int:  # fmt: skip
+        """The largest entries of a matrix in a basis over the set, a matrix that vanishes on its rows beside it."""
+        low, high, _ = hull(leaves, basis, proves, beside)
         witness = {"bits": bits, "trees": list(trees), "rows": texts(basis[0]), "inverse": texts(basis[1])}
-        return self._measured("entries", proves, on, witness, {k: upward(x) for k, x in keyed(found).items()}, basis)
+        witness["beside"] = texts(beside)
+        ends = {k: downward(x) if k.startswith("-") else upward(x) for k, x in keyed(low, high).items()}
+        return self._measured("entries", proves, on, witness, ends, basis)
 
     def _measured(
         self,
@@ -144,24 +148,35 @@ class NormWriter(Writer):
         concludes: dict[str, str],
         basis: tuple[Matrix, Matrix] | None,
     ) -> int:
-        uses = [on, *([self.flow] if self.flow is not None and self._moves(proves, on) else [])]
-        self.raw.append({"rule": rule, "proves": proves, "uses": uses, "witness": witness, "concludes": concludes})
-        claimed = {k: Fraction(x) for k, x in concludes.items()}
-        domain = self.proof.lines[on].domain
-        self.proof.lines[len(self.raw)] = Line(rule, proves, tuple(uses), claimed, domain, True, basis=basis)
+        uses, claimed = self.rests(proves, on), {k: Fraction(x) for k, x in concludes.items()}
+        line = {"rule": rule, "proves": self.named(proves), "uses": uses, "witness": witness, "concludes": concludes}
+        self.raw.append(line)
+        self.proof.lines[len(self.raw)] = Line(
+            rule, proves, tuple(uses), claimed, self.domain(on), True, basis=basis, part=self.part
+        )
         return len(self.raw)
+
+    def rests(self, proves: str, on: int) -> list[int]:
+        """The lines that a matrix rests on: the set, and the flow of the stance where it is met."""
+        return [on, *([self.flow] if self.flow is not None and self._moves(proves, on) else [])]
+
+    def seen(self, proves: str, on: int) -> tuple[Metric, Metric]:
+        """The norm of errors, and that of what a matrix makes of them, its inverse that of the first."""
+        domain = self.domain(on)
+        if domain is None or domain.metric is None:
+            raise ValueError("no metric")
+        return domain.metric, domain.metric
 
     def _moves(self, proves: str, on: int) -> bool:
         """Whether a matrix rests on the flow of the stance."""
-        d, domain = self.derivation, self.proof.lines[on].domain
+        d, domain = self.derivation, self.domain(on)
         return any(self._flow(d.meaning(name, domain).root) for row in named(d, proves) for name in row)
 
     def stretch(self, proves: str, point: dict[str, Fraction], direction: Sequence[float], bits: int, on: int) -> int:
         """The norm surely taken at a point; raises checker.rules.Rejected where the point is not in the set."""
-        domain = self.proof.lines[on].domain
-        norm = None if domain is None else domain.metric
-        if domain is None or norm is None:
-            raise ValueError("no metric")
+        domain, (before, norm) = self.domain(on), self.seen(proves, on)
+        if domain is None:
+            raise ValueError("no set")
         table = Table(self.derivation, proves, domain, bits, self._flows())
         at = {}
         for v in table.variables:
@@ -170,11 +185,10 @@ class NormWriter(Writer):
         middle, half = middle_and_half(table.at(at))
         image = [sum((x * y for x, y in zip(row, vector, strict=True)), Fraction(0)) for row in middle]
         off = [sum((x * abs(y) for x, y in zip(row, vector, strict=True)), Fraction(0)) for row in half]
-        scale = norm.most(vector) if proves.startswith("slopes") else abs(vector[0])
+        scale = before.most(vector) if proves.startswith("slopes") else abs(vector[0])
         lower = (norm.least(image) - norm.length(off)) / scale
         witness = {"bits": bits, "at": at, "direction": [str(x) for x in vector]}
-        uses = [on, *([self.flow] if self.flow is not None and self._moves(proves, on) else [])]
-        return self.append("stretch", proves, uses, witness, {"lower": downward(lower)})
+        return self.append("stretch", proves, self.rests(proves, on), witness, {"lower": downward(lower)})
 
     def product(self, points: Sequence[dict[str, Fraction]], power: int, bits: int, on: int, wanted: Fraction) -> None:
         """Jacobians whose product shows a gain of `wanted` or more in any norm: no line where it shows less."""
@@ -224,15 +238,36 @@ class NormWriter(Writer):
     def componentwise(self, invariant: int, slopes: int, misses: int, moves: list[int]) -> int | None:
         """A bound for each state by comparison; None where the entries do not contract."""
         d, lines = self.derivation, self.proof.lines
-        k, residual = compared(d, lines[slopes], lines[misses], [lines[n] for n in moves])
-        p, b = solved(k, [Fraction(1)] * len(k)), solved(k, residual)
         basis = lines[slopes].basis
-        if p is None or b is None or basis is None or min(p) <= 0 or min(b) < 0:
+        if basis is None:
             return None
-        bounds = [sum((abs(x) * y for x, y in zip(row, b, strict=True)), Fraction(0)) for row in basis[1]]
+        about = self._resting(lines[slopes], lines[misses])
+        k, residual = compared(d, lines[slopes], lines[misses], [lines[n] for n in moves], about)
+        p, b = (solved if len(k) <= MOST_EXACT else nearly)(k, [Fraction(1)] * len(k), residual)
+        if p is None or b is None or not comparison(k, residual, p, b):
+            return None
+        bounds = [
+            abs(dot(row, about)) + sum((abs(x) * y for x, y in zip(row, b, strict=True)), Fraction(0))
+            for row in basis[1]
+        ]
         concludes = {s: upward(x) for s, x in zip(d.states, bounds, strict=True)}
-        witness = {"p": [str(x) for x in p], "b": [str(x) for x in b]}
+        witness = {key: [str(x) for x in each] for key, each in (("about", about), ("p", p), ("b", b))}
         return self.append("componentwise", "componentwise", [invariant, slopes, misses, *moves], witness, concludes)
+
+    def _resting(self, slopes: Line, misses: Line) -> list[Fraction]:
+        """About where the middle of the map rests, in a basis: any point would do."""
+        (middle, _), (miss, _) = (
+            middles(slopes, len(slopes.basis[0]) if slopes.basis is not None else 0),
+            middles(misses, 1),
+        )
+        a, m = (np.array([[to_float(x) for x in row] for row in each]) for each in (middle, miss))
+        try:
+            found = np.linalg.solve(np.eye(len(a)) - a, m[:, 0])
+        except np.linalg.LinAlgError:
+            found = np.full(len(a), np.nan)
+        if not np.isfinite(found).all():
+            return [Fraction(0)] * len(a)
+        return [Fraction(f"{x:.6g}") for x in found]
 
 
 def spelled(v: Ranged, x: Fraction) -> str:
@@ -256,20 +291,34 @@ def moves_of(writer: Writer) -> list[tuple[str, str]]:
     return movements(writer.derivation)
 
 
-def solved(k: Matrix, right: Sequence[Fraction]) -> list[Fraction] | None:
-    """(1 − K)⁻¹ applied, exactly; None where it has no inverse."""
+def solved(k: Matrix, *right: Sequence[Fraction]) -> list[list[Fraction] | None]:
+    """(1 − K)⁻¹ applied to each, exactly; None where it has no inverse."""
     n = len(k)
-    rows = [[(i == j) - x for j, x in enumerate(row)] + [right[i]] for i, row in enumerate(k)]
+    rows = [[(i == j) - x for j, x in enumerate(row)] + [r[i] for r in right] for i, row in enumerate(k)]
     for i in range(n):
         pivot = next((r for r in range(i, n) if rows[r][i]), None)
         if pivot is None:
-            return None
+            return [None] * len(right)
         rows[i], rows[pivot] = rows[pivot], rows[i]
         rows[i] = [x / rows[i][i] for x in rows[i]]
         for r in range(n):
             if r != i and rows[r][i]:
                 rows[r] = [x - rows[r][i] * y for x, y in zip(rows[r], rows[i], strict=True)]
-    return [row[n] for row in rows]
+    return [[row[n + c] for row in rows] for c in range(len(right))]
+
+
+def nearly(k: Matrix, *right: Sequence[Fraction]) -> list[list[Fraction] | None]:
+    """b with K b + r < b, a little above (1 − K)⁻¹ r >= 0; None where the floats give none that is not negative."""
+    rows, found = np.array([[to_float(x) for x in row] for row in k]), list[list[Fraction] | None]()
+    for each in right:
+        r = np.array([to_float(x) for x in each])
+        with suppress(np.linalg.LinAlgError):
+            b = np.linalg.solve(np.eye(len(k)) - rows, r * (1 + SLACK) + SLACK * r.max())
+            usable = np.isfinite(b).all() and b.min() >= 0
+            found.append([Fraction(f"{x:.12g}") for x in b * (1 + SLACK**2)] if usable else None)
+            continue
+        found.append(None)
+    return found
 
 
 def texts(m: Matrix) -> list[list[str]]:

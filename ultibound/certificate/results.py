@@ -15,9 +15,6 @@ DIGITS = 20
 
 def assembled(claim: Claim, results: Results, remarks: list[tuple[str | None, bool]]) -> dict[str, Any]:
     """The entry as certificate-format states it; remarks say what limits each requirement."""
-    radius = written(results.radius) if results.settled else None
-    centre = {s: written(x) for s, x in results.targets().items()}
-    inside = {"kind": results.kind, "centre": centre, "radius": radius}
     routes = {n: paired(r.gain, r.residual, r.bound) for n, r in results.routes.items()}
     requirements, bands = [], []
     for r, outcome, (remark, _) in zip(claim.requirements, results.requirements, remarks, strict=True):
@@ -29,19 +26,35 @@ def assembled(claim: Claim, results: Results, remarks: list[tuple[str | None, bo
         requirements.append(entry)
         if r.kind == "sensitivity" and not r.over and outcome.value is not None:
             bands.append({"of": r.state, "by": r.by, **(written(outcome.value) or {})})
+    stances = {
+        name: {"set": certified(x), "metric": x.norm(), "states": by_state(x)} for name, x in results.stances().items()
+    }
     return {
-        "set": inside if results.settled else None,
+        "set": certified(results),
         "route": results.reported,
         **paired(results.gain, results.residual, results.bound),
         "sharp_bound": written(results.sharp),
-        "radius": radius,
-        "states": {s: {n: written(x) for n, x in each.items()} for s, each in results.by_state().items()},
+        "radius": written(results.radius) if results.settled else None,
+        "states": by_state(results),
         "routes": routes,
         "metric": results.norm(),
         "sensitivities": bands,
         "gain_intervals": [],
         "requirements": requirements,
+        **({"stances": stances} if stances else {}),
     }
+
+
+def certified(results: Results) -> dict[str, Any] | None:
+    """The set; None where none was proved."""
+    if not results.settled:
+        return None
+    centre = {s: written(x) for s, x in results.targets().items()}
+    return {"kind": results.kind, "centre": centre, "radius": written(results.radius)}
+
+
+def by_state(results: Results) -> dict[str, Any]:
+    return {s: {n: written(x) for n, x in each.items()} for s, each in results.by_state().items()}
 
 
 def paired(gain: Span, residual: Span, bound: Span | None) -> dict[str, Any]:

@@ -13,12 +13,11 @@ from dataclasses import dataclass, field
 from typing import Any
 
 from .calculus import Unprovable
-from .derive import Derivation
 from .document import Unreadable, digest, read
 from .grammar import Refused
+from .graph_outcomes import results_of
 from .holding import hold
-from .outcomes import results_of
-from .rules import Proof, Rejected
+from .rules import Proof, Rejected, proof_of
 from .statement import read_statement
 
 __all__ = ["Verdict", "check"]
@@ -53,9 +52,8 @@ def check(data: bytes, watch: Callable[[int, int], None] = lambda done, total: N
     number = 0
     place = "claim"
     try:
-        derivation = Derivation(claimed(entries))
+        proof = proof_of(claimed(entries))
         place = "proof"
-        proof = Proof(derivation)
         if not isinstance(entries["proof"], list) or not entries["proof"]:
             raise Rejected("a proof has at least one line")
         for number, raw in enumerate(entries["proof"], 1):

@@ -60,6 +60,7 @@ class Domain:
     beyond: Fraction = Fraction(0)
     targets: tuple[Ends, ...] = ()
     metric: Metric | None = None
+    of: Domain | None = None  # of a box that trajectories end up in: the set they start in
 
     @property
     def outer(self) -> Fraction:
@@ -112,6 +113,7 @@ class Derivation:
         if not several and any(set(constant(w, statement.values)) != {Fraction(1)} for w in statement.weights.values()):
             raise Unprovable("only the weight 1 can be checked for a single state")
         self.statement, self.stance, self.terms = statement, stance, Terms()
+        self.onto = statement  # whose targets a step leads to (graph.py)
         self.states = tuple(stance.states)
         self.state = self.states[0]  # of a claim of one state, that one
         self.motion: Motion | None = None
@@ -177,7 +179,8 @@ class Derivation:
             return self.over(self.names().of(f"next({s})"))
         if by is None and kind == "target-miss":
             targets = {x: self.names().of(f"target({x})") for x in self.states}
-            return self.over(self.terms.difference(self.after(steps, targets, s), targets[s]))
+            aim = Names(self.terms, self.onto, {}, "").of(f"target({s})")
+            return self.over(self.terms.difference(self.after(steps, targets, s), aim))
         if kind == "target-slope" and by in self.moving(s):
             held = {h: self.statement.uncertain[h] for h in self.moving(s)}
             given = {h: (self.occurs(q), self.surely(q)) for h, q in held.items()}

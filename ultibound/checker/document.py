@@ -5,6 +5,7 @@ from __future__ import annotations
 import hashlib
 import json
 import re
+from itertools import chain
 from typing import Any
 
 FORMAT = "ultibound-certificate/1"
@@ -74,17 +75,16 @@ def small(text: str) -> int:
 
 def shallow(found: Any) -> None:
     """Bounds nesting, and refuses what UTF-8 cannot hold, without recursion."""
-    waiting: list[tuple[Any, int]] = [(found, 1)]
-    while waiting:
-        value, depth = waiting.pop()
+    level, depth = [found], 1
+    while level:
         if depth > DEEPEST:
             raise Unreadable(f"nested more than {DEEPEST} deep")
-        if isinstance(value, dict):
-            waiting += [(x, depth + 1) for pair in value.items() for x in pair]
-        elif isinstance(value, list):
-            waiting += [(x, depth + 1) for x in value]
-        elif isinstance(value, str) and SURROGATE.search(value):
+        if any(SURROGATE.search(x) for x in level if isinstance(x, str)):
             raise Unreadable("a lone surrogate in a text")
+        tables, lists = [x for x in level if isinstance(x, dict)], [x for x in level if isinstance(x, list)]
+        level = [*chain.from_iterable(tables), *chain.from_iterable(x.values() for x in tables)]
+        level += chain.from_iterable(lists)
+        depth += 1
 
 
 def canonical(entries: dict[str, Any]) -> bytes:

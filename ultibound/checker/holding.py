@@ -16,25 +16,21 @@ def hold(results: Results, claimed: Any) -> None:
     """Raises Rejected where `results` of a certificate says more than, or other than, what was derived."""
     radius = results.radius if results.settled else None
     whole = "set route gain residual bound sharp_bound radius states routes metric sensitivities gain_intervals"
-    keys(claimed, "results", f"{whole} requirements")
-    targets, found = results.targets(), results.by_state()
-    if claimed["set"] is not None or results.settled:
-        keys(claimed["set"], "results.set", "kind centre radius")
-        same(claimed["set"]["kind"], results.kind, "results.set.kind")
-        keys(claimed["set"]["centre"], "results.set.centre", " ".join(targets))
-        for s, centre in targets.items():
-            span(claimed["set"]["centre"][s], centre, "results.set.centre")
-        span(claimed["set"]["radius"], radius, "results.set.radius", inward=True)
+    stances = results.stances()
+    keys(claimed, "results", f"{whole} requirements" + (" stances" if stances else ""))
+    certified(results, claimed["set"], "results.set")
     same(claimed["route"], results.reported, "results.route")
     span(claimed["radius"], radius, "results.radius", inward=True)
     span(claimed["sharp_bound"], results.sharp, "results.sharp_bound")
     pair({x: claimed[x] for x in PAIR}, Route(results.gain, results.residual, results.bound), "results")
-    keys(claimed["states"], "results.states", " ".join(found))
-    for s, figures in found.items():
-        keys(claimed["states"][s], f"results.states.{s}", " ".join(figures))
-        for name, figure in figures.items():
-            inward = name in ("radius", "push")
-            span(claimed["states"][s][name], figure, f"results.states.{s}.{name}", inward=inward)
+    by_state(results, claimed["states"], "results.states")
+    for name, one in stances.items():
+        keys(claimed["stances"], "results.stances", " ".join(stances))
+        place = f"results.stances.{name}"
+        keys(claimed["stances"][name], place, "set metric states")
+        certified(one, claimed["stances"][name]["set"], f"{place}.set")
+        same(claimed["stances"][name]["metric"], one.norm(), f"{place}.metric")
+        by_state(one, claimed["stances"][name]["states"], f"{place}.states")
     keys(claimed["routes"], "results.routes", " ".join(results.routes))
     for name, route in results.routes.items():
         pair(claimed["routes"][name], route, f"results.routes.{name}")
@@ -45,6 +41,28 @@ def hold(results: Results, claimed: Any) -> None:
         raise Rejected("results.requirements: one entry a requirement of the claim")
     for number, (entry, outcome) in enumerate(zip(claimed["requirements"], results.requirements, strict=True), 1):
         requirement(results, number, entry, outcome)
+
+
+def certified(results: Results, claimed: Any, place: str) -> None:
+    """The set: of one stance, or of all of them together."""
+    if claimed is None and not results.settled:
+        return
+    targets, radius = results.targets(), results.radius if results.settled else None
+    keys(claimed, place, "kind centre radius")
+    same(claimed["kind"], results.kind, f"{place}.kind")
+    keys(claimed["centre"], f"{place}.centre", " ".join(targets))
+    for s, centre in targets.items():
+        span(claimed["centre"][s], centre, f"{place}.centre")
+    span(claimed["radius"], radius, f"{place}.radius", inward=True)
+
+
+def by_state(results: Results, claimed: Any, place: str) -> None:
+    found = results.by_state()
+    keys(claimed, place, " ".join(found))
+    for s, figures in found.items():
+        keys(claimed[s], f"{place}.{s}", " ".join(figures))
+        for name, figure in figures.items():
+            span(claimed[s][name], figure, f"{place}.{s}.{name}", inward=name in ("radius", "push"))
 
 
 def pair(claimed: Any, derived: Route, place: str) -> None:
@@ -70,7 +88,7 @@ def requirement(results: Results, number: int, entry: Any, outcome: Outcome) -> 
         not isinstance(remark, str) or not remark or len(remark) > REMARK or not remark.isprintable()
     ):
         raise Rejected(f"{at}.limited_by: null or a printable remark")
-    if remark is None and (entry["verdict"] == "undecided" or results.derivation.leaves_out(r)):
+    if remark is None and (entry["verdict"] == "undecided" or results.leaves_out(r)):
         raise Rejected(f"{at}.limited_by: must say what limits this")
 
 

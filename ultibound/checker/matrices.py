@@ -18,7 +18,7 @@ Matrix = tuple[tuple[Fraction, ...], ...]
 Whole = list[list[int]]
 
 KINDS = ("box", "polytope", "ellipsoid")
-LEAST_STATES, MOST_STATES = 2, 6
+MOST_STATES = 6
 MOST_ROWS = 64
 MOST_SLOPES = 8  # whose signs are told apart; further ones count as rest
 LONGEST = 4000  # bits of a matrix's whole numbers, and of the denominator they share
@@ -74,8 +74,8 @@ def metric(kind: str, rows: Matrix, inverse: Matrix, states: int) -> Metric:
     """The norm of so many states, its matrices checked: proofs/matrix.md (1). Raises Rejected."""
     if kind not in KINDS:
         raise Rejected(f"metric: the kind is one of {', '.join(KINDS)}")
-    if not LEAST_STATES <= states <= MOST_STATES:
-        raise Rejected(f"metric: {LEAST_STATES} to {MOST_STATES} states")
+    if not 1 <= states <= MOST_STATES:
+        raise Rejected(f"metric: 1 to {MOST_STATES} states")
     m = len(rows)
     if not 0 < m <= MOST_ROWS:
         raise Rejected(f"metric: 1 to {MOST_ROWS} rows")
@@ -161,13 +161,34 @@ def norm_over(
     return reached + spread
 
 
-def entries(rows: Matrix, inverse: Matrix | None, leaf: Leaf) -> Matrix:
-    """Least upper bounds of |(V A L)_ij|, or |(V A)_ij| without an inverse: proofs/matrix.md (6). Raises Rejected."""
+def entries(rows: Matrix, inverse: Matrix | None, leaf: Leaf, beside: Matrix = ()) -> tuple[Matrix, Matrix]:
+    """Largest lower and least upper bounds of (V A L + Z)_ij, or of (V A)_ij without an inverse: proofs/matrix.md (6).
+
+    Z is `beside`, or 0. Raises Rejected.
+    """
     found = image(rows, inverse, leaf)
-    most = found.rest
-    for part in (found.centre, *found.slopes):
-        most = added(most, part)
-    return tuple(tuple(Fraction(x, found.unit) for x in row) for row in most)
+    centre, half, unit = found.centre, found.rest, found.unit
+    for part in found.slopes:
+        half = added(half, part)
+    if beside:
+        z, one = whole(beside)
+        centre = [
+            [one * x + unit * y for x, y in zip(row, other, strict=True)] for row, other in zip(centre, z, strict=True)
+        ]
+        half, unit = [[one * x for x in row] for row in half], one * unit
+    low, high = (
+        tuple(
+            tuple(Fraction(x + sign * y, unit) for x, y in zip(row, other, strict=True))
+            for row, other in zip(centre, half, strict=True)
+        )
+        for sign in (-1, 1)
+    )
+    return low, high
+
+
+def vanishes(beside: Matrix, rows: Matrix) -> bool:
+    """Whether Z V = 0: proofs/matrix.md (6)."""
+    return not any(map(any, times(whole(beside)[0], whole(rows)[0])))
 
 
 def comparison(k: Matrix, residual: Sequence[Fraction], p: Sequence[Fraction], b: Sequence[Fraction]) -> bool:
@@ -218,7 +239,7 @@ def seen(metric: Metric, leaf: Leaf) -> Image:
     columns = len(leaf.centre[0]) if leaf.centre else 0
     if columns not in (1, len(metric.inverse)):
         raise Rejected("matrix: a vector or a square matrix is bounded")
-    return image(metric.rows, metric.inverse if columns > 1 else None, leaf)
+    return image(metric.rows, metric.inverse if columns == len(metric.inverse) else None, leaf)
 
 
 def image(rows: Matrix, inverse: Matrix | None, leaf: Leaf) -> Image:
@@ -257,7 +278,7 @@ def whole(rows: Sequence[Sequence[Fraction]]) -> tuple[Whole, int]:
 
 
 def times(a: Whole, b: Whole) -> Whole:
-    columns = list(zip(*b, strict=True))
+    columns = [column if any(column) else () for column in zip(*b, strict=True)]  # of zeros nothing is added up
     return [[sum(map(mul, row, column)) for column in columns] for row in a]
 
 

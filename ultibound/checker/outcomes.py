@@ -109,9 +109,9 @@ class SeveralResults(Results):
         return lower, everywhere
 
     def bounds_by_state(self) -> dict[str, Fraction]:
-        """proofs/several.md (2), (3): the least bound of each state, by the norm and by comparison."""
+        """proofs/several.md (2), (3), (8): the least bound of each state, by the norm and by comparison."""
         lines = self.lines("componentwise", "componentwise")
-        if any(line.domain != self.domain for _, line in lines):
+        if any(line.domain is None or self.domain not in (line.domain, line.domain.of) for _, line in lines):
             raise Rejected("the comparison refers to another set")
         if not self.settled:
             return {}
@@ -277,8 +277,3 @@ class SeveralResults(Results):
             columns = tuple(zip(*rows, strict=True))
             rows = tuple(tuple(dot(a, b) for b in columns) for a in columns)
         return {"kind": self.metric.kind, "matrix": [[str(x) for x in row] for row in rows]}
-
-
-def results_of(proof: Proof) -> Results:
-    """What a proof amounts to, of one state or of several."""
-    return SeveralResults(proof) if len(proof.derivation.states) > 1 else Results(proof)

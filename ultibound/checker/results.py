@@ -45,6 +45,8 @@ class Route:
 class Results:
     """Everything `results` may claim; `needed` collects the lines it rests on."""
 
+    part = ""  # the stance the lines are about, or the step from one to the next (graph_outcomes.py)
+
     def __init__(self, proof: Proof, variant: int = 0) -> None:
         self.proof, self.variant, self.needed = proof, variant, set[int]()
         self.unsupported = 0  # of what has to stay positive throughout a stance, the first that is not shown to
@@ -94,6 +96,14 @@ class Results:
     def norm(self) -> dict[str, Any]:
         """The metric, as `results.metric` has it."""
         return {"kind": "box", "weights": {self.state: "1"}}
+
+    def stances(self) -> dict[str, Results]:
+        """What is known of each stance, where they have names."""
+        return {}
+
+    def leaves_out(self, r: Any) -> bool:
+        """Whether `over` of a requirement may leave out values that occur."""
+        return self.derivation.leaves_out(r)
 
     def set_found(self, invariant: Line | None, ball: Line) -> tuple[str | None, bool]:
         """Its kind, and whether requirements may refer to it: proofs/invariant-set.md (4)."""
@@ -268,8 +278,8 @@ class Results:
         return residual
 
     def lines(self, rule: str, proves: str) -> list[tuple[int, Line]]:
-        wanted = self.variant, rule, proves
-        return [(n, x) for n, x in self.proof.lines.items() if (x.variant, x.rule, x.proves) == wanted]
+        wanted = self.variant, self.part, rule, proves
+        return [(n, x) for n, x in self.proof.lines.items() if (x.variant, x.part, x.rule, x.proves) == wanted]
 
     def one(self, rule: str, proves: str) -> Line | None:
         found = self.lines(rule, proves)

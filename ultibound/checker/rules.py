@@ -13,7 +13,9 @@ from .courses import arithmetic, orbit, path, place
 from .derive import Derivation, varied
 from .flows import trajectory
 from .forms import walk
+from .graph import Graph, graph_of, of_part, seen_from, stepping
 from .jacobians import inside
+from .model import Statement
 from .numerals import Rejected, quantity
 from .ranges import Evaluator
 from .reals import Undefined
@@ -40,13 +42,26 @@ SHAPES: dict[str, tuple[tuple[str, ...], tuple[str, ...] | None]] = {
     "ultimate-bound": ((), ("bound",)),
     "metric": (("inverse", "kind", "rows"), ()),
     "matrix": (("bits", "trees"), ("norm",)),
-    "entries": (("bits", "inverse", "rows", "trees"), None),  # one an entry
+    "entries": (("beside", "bits", "inverse", "rows", "trees"), None),  # two an entry
     "stretch": (("at", "bits", "direction"), ("lower",)),
-    "componentwise": (("b", "p"), None),  # one a state
+    "componentwise": (("about", "b", "p"), None),  # one a state
     "invariant-rows": ((), ()),
+    "absorbed": ((), None),  # one a state
     "periodic": (("bits", "held", "start", "steps"), None),  # one a state
+    "graph-regions": ((), ()),
+    "graph-balls": ((), ()),
+    "graph-bound": (("b", "p"), None),  # one a stance
+    "graph-entries": (("after", "before", "bits", "trees"), None),  # one an entry
+    "graph-componentwise": (("b", "p"), None),  # one a state of each stance
     "product": (("bits", "points", "power"), ("lower",)),
 }
+NAMED = re.compile(r"(?:over\[([1-9][0-9]{0,3})\]:)?(?:([A-Za-z]\w*(?:>[A-Za-z]\w*)?):)?(.*)", re.ASCII | re.DOTALL)
+
+
+def proof_of(statement: Statement) -> Proof:
+    """A proof of a claim, without lines yet. Raises Unprovable."""
+    graph = graph_of(statement)
+    return Proof(Derivation(statement)) if graph is None else Proof(graph.first, graph=graph)
 
 
 @dataclass
@@ -57,9 +72,12 @@ class Proof:
     lines: dict[int, Line] = field(default_factory=dict)
     leaves: int = 0
     variants: dict[int, Derivation] = field(default_factory=dict)
+    graph: Graph | None = None  # of named stances
 
-    def about(self, variant: int) -> Derivation:
-        """What the claim asks, or what it asks over the ranges of one requirement."""
+    def about(self, variant: int, part: str = "") -> Derivation:
+        """What the claim asks, or what it asks over the ranges of one requirement, or of a stance or a step."""
+        if self.graph is not None or part:
+            return of_part(self.graph, variant, part)
         if variant and variant not in self.variants:
             self.variants[variant] = Derivation(varied(self.derivation.statement, variant))
         return self.variants[variant] if variant else self.derivation
@@ -79,18 +97,23 @@ class Proof:
         claimed = {key: quantity(text, f"concludes.{key}") for key, text in raw["concludes"].items()}
         used = [self.lines[n] for n in uses]
         witness = raw["witness"]
-        prefix = re.fullmatch(r"over\[([1-9][0-9]{0,3})\]:(.*)", proves, re.ASCII)
-        variant, proves = (int(prefix[1]), prefix[2]) if prefix else (0, proves)
+        prefix = NAMED.fullmatch(proves)
+        variant, part = int(prefix[1] or 0) if prefix else 0, (prefix[2] or "") if prefix else ""
+        proves = prefix[3] if prefix else proves
+        used = [seen_from(part, line) for line in used]
         if any(line.variant != variant for line in used):
             raise Rejected("uses: lines about other ranges")
         try:
-            d = self.about(variant)
-            if rule == "trajectory":
+            d = self.about(variant, part)
+            if self.graph is not None and (one := stepping(self.graph, part, rule, proves, used, witness, claimed)):
+                line = replace(one, uses=tuple(uses))
+                self.leaves += one.leaves
+            elif rule == "trajectory":
                 if proves != "flow" or used or d.motion is None:
                     raise Rejected("a flow rests on no other line, and on dynamics")
                 flows = trajectory(d.terms, d.motion, d.statement.libraries, witness, claimed["error"])
                 line = Line(rule, proves, (), claimed, flows=flows)
-            elif (about := concluded(d, rule, proves, used, witness, claimed)) is not None:
+            elif self.graph is None and (about := concluded(d, rule, proves, used, witness, claimed)) is not None:
                 line = replace(about, uses=tuple(uses))
                 self.leaves += about.leaves
             elif rule in ("range", "point"):
@@ -109,7 +132,7 @@ class Proof:
                 line = Line(rule, proves, tuple(uses), claimed, proved)
         except (Undefined, Unprovable) as why:
             raise Rejected(str(why)) from None
-        self.lines[number] = replace(line, variant=variant)
+        self.lines[number] = replace(line, variant=variant, part=part)
 
     def enclosed(
         self,

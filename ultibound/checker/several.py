@@ -7,17 +7,18 @@ from dataclasses import replace
 from fractions import Fraction
 from typing import Any
 
+from .absorbed import absorbed
 from .derive import Derivation, Domain
 from .flows import Flows
 from .grammar import constant
 from .jacobians import Table, middle_and_half
-from .matrices import Leaf, Matrix, Metric, comparison, entries, metric, norm_at_most
+from .matrices import Leaf, Matrix, Metric, comparison, dot, entries, metric, norm_at_most, vanishes
 from .numerals import Rejected, quantity
 from .periodic import periodic
 from .products import product
 from .theorems import Line, Quantities, fewer, magnitude, parted, require
 
-OWN = ("metric", "matrix", "entries", "stretch", "componentwise", "invariant-rows", "periodic", "product")
+OWN = ("metric", "matrix", "entries", "stretch", "componentwise", "invariant-rows", "periodic", "product", "absorbed")
 KEPT = 5000  # leaves in memory
 
 
@@ -27,9 +28,9 @@ def stated(d: Derivation, proves: str, used: list[Line], witness: dict[str, Any]
         raise Rejected("a metric rests on no other line")
     n, asked = len(d.states), d.statement.metric
     found = metric(str(witness["kind"]), matrix(witness["rows"], "rows"), matrix(witness["inverse"], "inverse"), n)
-    if asked not in ("auto", found.kind):
+    if asked not in ("auto", found.kind) and n > 1:
         raise Rejected(f"kind: the claim asks for {asked}")
-    if asked == "box" or d.statement.weights:
+    if asked == "box" or d.statement.weights or n == 1:
         for i, s in enumerate(d.states):
             low, high = constant(d.statement.weights[s], d.statement.values) if s in d.statement.weights else (1, 1)
             if found.kind != "box" or not low == found.rows[i][i] == high:
@@ -95,8 +96,8 @@ def invariant_region(d: Derivation, proves: str, used: list[Line]) -> Domain:
         _, inner = d.region(s)
         if not (inner[0] <= line.concludes["lower"] and line.concludes["upper"] <= inner[1]):
             raise Rejected(f"{line.proves} is not shown to stay in the region")
-    target = used[1].concludes
-    return Domain(False, Fraction(0), (target["lower"], target["upper"]), metric=norm)
+    spans = tuple((x.concludes["lower"], x.concludes["upper"]) for x in used[1 : 1 + len(d.states)])
+    return Domain(False, Fraction(0), spans[0], targets=spans, metric=norm)
 
 
 def concluded(
@@ -117,6 +118,8 @@ def concluded(
         return replace(line, domain=componentwise(d, proves, used, witness, claimed))
     if rule == "periodic":
         return replace(line, domain=periodic(d, proves, used, witness, claimed))
+    if rule == "absorbed":
+        return replace(line, domain=absorbed(d, proves, used, claimed))
     if rule == "product":
         return product(d, proves, used, witness, claimed)
     if rule == "invariant-rows":
@@ -144,22 +147,34 @@ def bounded(
     """Rules matrix and entries: what holds at every leaf. Returns the set, the leaves and the basis (or None)."""
     used, flows = parted(used)
     domain, norm = of_set(used)
-    table = Table(d, proves, domain, witness["bits"], flows)
+    leaves = gone_through(d, Table(d, proves, domain, witness["bits"], flows), proves, flows, witness)
     if rule == "matrix":
-        count = 0
-        for leaf in gone_through(d, table, proves, flows, witness):
-            count += 1
-            if not norm_at_most(norm, leaf, claimed["norm"]):
-                raise Rejected(f"{proves}: a leaf is not shown to stay within the norm")
-        return domain, count, None
+        return domain, shown(norm, leaves, proves, claimed), None
     basis = based(d, witness)
-    most, count = largest(gone_through(d, table, proves, flows, witness), basis, proves)
-    for key, x in keyed(most).items():
-        if not claimed.get(key, Fraction(-1)) >= x:
+    return domain, entered(leaves, basis, proves, claimed, apart(basis, proves, witness["beside"])), basis
+
+
+def shown(norm: Metric, leaves: Iterable[Leaf], proves: str, claimed: Quantities) -> int:
+    """How many leaves there are, every one within the norm that is claimed."""
+    count = 0
+    for leaf in leaves:
+        count += 1
+        if not norm_at_most(norm, leaf, claimed["norm"]):
+            raise Rejected(f"{proves}: a leaf is not shown to stay within the norm")
+    return count
+
+
+def entered(
+    leaves: Iterable[Leaf], basis: tuple[Matrix, Matrix], proves: str, claimed: Quantities, beside: Matrix = ()
+) -> int:
+    """How many leaves there are, every one within the entries that are claimed."""
+    low, high, count = hull(leaves, basis, proves, beside)
+    if set(claimed) != set(keyed(low, high)):
+        raise Rejected(f"{proves}: two conclusions an entry")
+    for key, x in keyed(low, high).items():
+        if not (claimed[key] <= x if key.startswith("-") else claimed[key] >= x):
             raise Rejected(f"{proves}: entry {key} is less than what the leaves show")
-    if set(claimed) != set(keyed(most)):
-        raise Rejected(f"{proves}: one conclusion an entry")
-    return domain, count, basis
+    return count
 
 
 def gone_through(
@@ -187,35 +202,76 @@ def based(d: Derivation, witness: dict[str, Any]) -> tuple[Matrix, Matrix]:
     return norm.rows, norm.inverse
 
 
-def largest(leaves: Iterable[Leaf], basis: tuple[Matrix, Matrix], proves: str) -> tuple[Matrix, int]:
-    """The largest entries over all leaves in a basis, and how many leaves there are."""
+def apart(basis: tuple[Matrix, Matrix], proves: str, beside: Any) -> Matrix:
+    """Z with Z V = 0, which the matrix may have added to it in a basis of more rows than states: matrix.md (6)."""
+    if beside == []:
+        return ()
+    rows, z = basis[0], matrix(beside, "beside")
+    if not proves.startswith("slopes") or len(z) != len(rows) or any(len(row) != len(rows) for row in z):
+        raise Rejected("beside: of slopes, a row and a column for each row of the basis")
+    if not vanishes(z, rows):
+        raise Rejected("beside: times the rows it is not 0")
+    return z
+
+
+def hull(
+    leaves: Iterable[Leaf], basis: tuple[Matrix, Matrix], proves: str, beside: Matrix = ()
+) -> tuple[Matrix, Matrix, int]:
+    """The least and the largest entries over all leaves in a basis, and how many leaves there are."""
     rows, inverse = basis
-    found: Matrix = ()
+    found: tuple[Matrix, Matrix] | None = None
     count = 0
     for leaf in leaves:
         count += 1
-        here = entries(rows, inverse if proves.startswith("slopes") else None, leaf)
-        found = tuple(tuple(map(max, a, b)) for a, b in zip(found, here, strict=True)) if found else here
-    return found, count
+        here = entries(rows, inverse if proves.startswith("slopes") else None, leaf, beside)
+        if found is not None:
+            low, high = (
+                tuple(tuple(map(pick, a, b)) for a, b in zip(x, y, strict=True))
+                for pick, x, y in zip((min, max), found, here, strict=True)
+            )
+            here = low, high
+        found = here
+    return *(found or ((), ())), count
 
 
-def keyed(m: Matrix) -> dict[str, Fraction]:
-    return {f"{i},{j}": x for i, row in enumerate(m, 1) for j, x in enumerate(row, 1)}
+def keyed(low: Matrix, high: Matrix) -> dict[str, Fraction]:
+    """Upper ends by row and column, lower ends with a minus before them."""
+    return {
+        f"{sign}{i},{j}": x
+        for sign, m in (("", high), ("-", low))
+        for i, row in enumerate(m, 1)
+        for j, x in enumerate(row, 1)
+    }
+
+
+def middles(line: Line, columns: int) -> tuple[Matrix, Matrix]:
+    """The entries that a line shows, as their middles and half widths."""
+    ends = [
+        [(line.concludes[f"-{i},{j}"], line.concludes[f"{i},{j}"]) for j in range(1, columns + 1)]
+        for i in range(1, len(line.basis[0]) + 1 if line.basis is not None else 1)
+    ]
+    return middle_and_half(ends)
 
 
 def stretched(d: Derivation, proves: str, used: list[Line], witness: dict[str, Any], claimed: Quantities) -> Domain:
     """Rule stretch: a direction that a Jacobian stretches by no less, or a miss no shorter (several.md (4))."""
     used, flows = parted(used)
     domain, norm = of_set(used)
-    table = Table(d, proves, domain, witness["bits"], flows)
+    stretch(Table(d, proves, domain, witness["bits"], flows), norm, norm, proves, witness, claimed)
+    return domain
+
+
+def stretch(
+    table: Table, before: Metric, after: Metric, proves: str, witness: dict[str, Any], claimed: Quantities
+) -> None:
+    """A direction in one norm, and how long its image surely is in the other."""
     middle, half = middle_and_half(table.at(witness["at"]))
     direction = numbers(witness["direction"], "direction", len(middle[0]))
     image = [sum((x * y for x, y in zip(row, direction, strict=True)), Fraction(0)) for row in middle]
     off = [sum((x * abs(y) for x, y in zip(row, direction, strict=True)), Fraction(0)) for row in half]
-    size = norm.most(direction) if proves.startswith("slopes") else abs(direction[0])
-    if not size > 0 or not claimed["lower"] * size <= norm.least(image) - norm.length(off):
+    size = before.most(direction) if proves.startswith("slopes") else abs(direction[0])
+    if not size > 0 or not claimed["lower"] * size <= after.least(image) - after.length(off):
         raise Rejected(f"{proves}: the direction is not shown to be stretched by so much")
-    return domain
 
 
 def movements(d: Derivation) -> list[tuple[str, str]]:
@@ -248,33 +304,37 @@ def componentwise(d: Derivation, proves: str, used: list[Line], witness: dict[st
     """proofs/several.md (3): K, residual and p > K p entry by entry, in a basis; a bound for each state."""
     ranges = [("range", f"target-slope[{s},{h}]") for s, h in movements(d)]
     found = [("entries", "slopes"), ("entries", "misses"), *ranges]
-    if proves != "componentwise" or [x.proves for x in used[:1]] != ["invariant"]:
+    if proves != "componentwise" or [x.proves for x in used[:1]] not in (["invariant"], ["absorbed"]):
         raise Rejected("componentwise rests on the invariant set, then entries")
     require(proves, "componentwise", used[1:], found)
     slopes, misses, domain = used[1], used[2], used[0].domain
-    if domain is None or slopes.domain != domain or misses.domain != domain:
+    if domain is None or slopes.domain != domain or misses.domain not in (domain, domain.of):
         raise Rejected("entries of another set")
     if slopes.basis is None or slopes.basis != misses.basis:
         raise Rejected("entries in different bases")
-    k, residual = compared(d, slopes, misses, used[3:])
-    p, b = (numbers(witness[key], key, len(k)) for key in ("p", "b"))
+    p, b, about = (numbers(witness[key], key, len(slopes.basis[0])) for key in ("p", "b", "about"))
+    k, residual = compared(d, slopes, misses, used[3:], about)
     if not comparison(k, residual, p, b):
         raise Rejected("p, b: K p < p, K b + residual <= b and p > 0 are not all met")
     if set(claimed) != set(d.states):
         raise Rejected("concludes: a bound for each state")
     for s, row in zip(d.states, slopes.basis[1], strict=True):
-        if not claimed[s] >= sum(abs(x) * y for x, y in zip(row, b, strict=True)):
+        if not claimed[s] >= abs(dot(row, about)) + sum(abs(x) * y for x, y in zip(row, b, strict=True)):
             raise Rejected(f"{s}: less than what the comparison shows")
     return domain
 
 
-def compared(d: Derivation, slopes: Line, misses: Line, moves: list[Line]) -> tuple[Matrix, list[Fraction]]:
-    """K and the residual of a comparison, movements of the target taken in."""
+def compared(
+    d: Derivation, slopes: Line, misses: Line, moves: list[Line], about: list[Fraction]
+) -> tuple[Matrix, list[Fraction]]:
+    """K and the residual of a comparison about g, movements of the target taken in: proofs/several.md (3)."""
     rows = slopes.basis[0] if slopes.basis is not None else ()
-    m, far = len(rows), moved(d, moves)
-    k = tuple(tuple(slopes.concludes[f"{i},{j}"] for j in range(1, m + 1)) for i in range(1, m + 1))
+    (middle, half), (miss, rest), far = middles(slopes, len(rows)), middles(misses, 1), moved(d, moves)
+    k = tuple(tuple(abs(x) + y for x, y in zip(*each, strict=True)) for each in zip(middle, half, strict=True))
+    near = [abs(dot(row, about) - g + x[0]) for row, g, x in zip(middle, about, miss, strict=True)]
+    off = [dot(row, [abs(g) for g in about]) + x[0] for row, x in zip(half, rest, strict=True)]
     shifts = [sum((abs(x) * y for x, y in zip(row, far, strict=True)), Fraction(0)) for row in rows]
-    return k, [misses.concludes[f"{i},1"] + shift for i, shift in enumerate(shifts, 1)]
+    return k, [x + y + z for x, y, z in zip(near, off, shifts, strict=True)]
 
 
 def invariant_rows(d: Derivation, proves: str, used: list[Line], claimed: Quantities) -> Domain:
@@ -289,7 +349,7 @@ def invariant_rows(d: Derivation, proves: str, used: list[Line], claimed: Quanti
     basis = domain.metric.rows, domain.metric.inverse
     if any(line.domain != domain or line.basis != basis for line in used[1:3]):
         raise Rejected("entries of another set, or in another basis")
-    k, residual = compared(d, used[1], used[2], used[3:])
+    k, residual = compared(d, used[1], used[2], used[3:], [Fraction(0)] * len(basis[0]))
     if not all(sum(row) * domain.radius + e <= domain.radius for row, e in zip(k, residual, strict=True)):
         raise Rejected("a row exceeds the radius")
     return domain

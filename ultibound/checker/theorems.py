@@ -28,6 +28,9 @@ class Line:
     metric: Metric | None = None
     basis: tuple[Matrix, Matrix] | None = None  # of entries: rows and their inverse
     leaves: int = 0
+    part: str = ""  # the stance, or the step from one to the next, that the line is about (graph.py)
+    domains: dict[str, Domain] | None = None  # of all stances
+    bases: tuple[tuple[Matrix, Matrix], ...] | None = None  # of entries of a step: before it, and after
 
 
 def parted(used: list[Line]) -> tuple[list[Line], Flows | None]:

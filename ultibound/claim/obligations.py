@@ -15,7 +15,7 @@ from math import prod
 from .constants import constant
 from .errors import Bad
 from .graph import Graph
-from .model import Claim, Quantity, Range, Requirement
+from .model import Claim, Quantity, Range, Requirement, Stance
 from .motion import PHASE, Motion, copy, grown, landed, motion, supported
 from .resolve import Scope
 from .signals import excess, followed, instant
@@ -123,13 +123,15 @@ class Obligations:
         s, x, on = of or self.state, by or self.state, f"@{steps}" if steps else ""
         return self._of(f"slope{on}[{s},{x}]", self._after(bound, s, x, steps), x, ranges)
 
-    def miss(self, state: str = "", steps: int = 0) -> Obligation:
-        """target-miss[s]: F(x*, w) − x* over uncertain values; target-miss@j[s]: of j steps."""
+    def miss(self, state: str = "", steps: int = 0, onto: Stance | None = None) -> Obligation:
+        """target-miss[s]: F(x*, w) − x* over uncertain values; target-miss@j[s]: of j steps.
+
+        `onto`: the second x* is that of the stance that follows.
+        """
         s, on = state or self.state, f"@{steps}" if steps else ""
         targets = {x: self._scope({}).name(f"target({x})") for x in self.states}
-        return self._of(
-            f"target-miss{on}[{s}]", self.graph.difference(self._after(targets, s, steps=steps), targets[s])
-        )
+        aim = Scope(self.graph, self.claim, onto or self.stance).name(f"target({s})")
+        return self._of(f"target-miss{on}[{s}]", self.graph.difference(self._after(targets, s, steps=steps), aim))
 
     def _after(self, bound: Mapping[str, int], s: str, cut: str = "", steps: int = 0, parts: int = 0) -> int:
         """A state after the steps of the horizon, or as many as said, less what the target has moved until the last.

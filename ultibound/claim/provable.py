@@ -8,9 +8,10 @@ from fractions import Fraction
 from .constants import constant
 from .errors import Bad
 from .model import Claim, Quantity, Requirement
-from .obligations import Domain, Obligations
+from .obligations import RANGED, Domain, Obligations
 
 MOST_STATES = 6
+MOST_STANCES = 16
 
 
 def varied(claim: Claim, number: int) -> Claim:
@@ -33,11 +34,20 @@ def varied(claim: Claim, number: int) -> Claim:
     )
 
 
+def of_stance(claim: Claim, name: str) -> Claim:
+    """The claim of one stance alone, its states in the same order as in every other (proofs/graph.md)."""
+    (stance,) = [s for s in claim.stances if s.name == name]
+    states = {x: stance.states[x] for x in claim.stances[0].states}
+    asked = tuple(replace(r, stance=None) if r.stance == name else r for r in claim.requirements)
+    alone = replace(stance, name="", then=(), mirror=(), states=states)
+    return replace(claim, stances=(alone,), requirements=asked)
+
+
 def not_yet(claim: Claim) -> str | None:
     """What of a well-formed claim cannot be proved yet, in one line; None if all of it can."""
     stance = claim.stances[0]
-    if len(claim.stances) > 1 or stance.name:
-        return "stance: claims with stances cannot be proved yet; state one map that covers every step"
+    if stance.name:
+        return _not_between(claim) or next((x for s in claim.stances if (x := not_yet(of_stance(claim, s.name)))), None)
     if stance.dynamics is not None:
         try:
             Obligations(claim)
@@ -80,6 +90,22 @@ def not_yet(claim: Claim) -> str | None:
         if unfollowed:
             why = "it also sets an exponent, the end of a range or the bound asked for, which is taken at its value"
             return f"require[{number}]: {unfollowed[0]} cannot be followed: {why}; use --set for each value"
+    return None
+
+
+def _not_between(claim: Claim) -> str | None:
+    """What of a claim of named stances cannot be proved yet."""
+    if len(claim.stances) > MOST_STANCES:
+        return f"stance: {len(claim.stances)} stances; claims of up to {MOST_STANCES} stances can be proved"
+    if claim.route not in ("best", "slope"):
+        return f"route: {claim.route} is not known between stances yet; use slope or best"
+    if claim.horizon != 1:
+        return f"horizon: {claim.horizon}; between stances one step at a time can be proved yet; remove the key"
+    for number, r in enumerate(claim.requirements, 1):
+        if r.during:
+            return f"require[{number}]: a push during the stance cannot be proved between stances yet"
+        if r.over and r.kind not in RANGED:
+            return f"require[{number}].over: ranges for a set and gain of its own cannot be proved between stances yet"
     return None
 
 

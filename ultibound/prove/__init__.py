@@ -15,11 +15,12 @@ from ..certificate.enclosing import Watch
 from ..certificate.remarks import STOPS
 from ..checker import Verdict, check
 from ..claim import Bad, Claim, ClaimError
-from ..claim.provable import not_yet, varied
+from ..claim.provable import not_yet, of_stance, varied
+from .graph import GraphAttempt
 from .one import Attempt, Known, apart, best
 from .several import SeveralAttempt
 
-__all__ = ["Attempt", "InternalError", "SeveralAttempt", "prove"]
+__all__ = ["Attempt", "GraphAttempt", "InternalError", "SeveralAttempt", "prove"]
 
 SHARPER = 1e-2  # factor on the gap when an undecided requirement is pursued
 FINEST = 1e-11
@@ -40,7 +41,8 @@ def prove(claim: Claim, watch: Watch | None = None) -> Certificate:
     if problem is not None:
         raise ClaimError.of(claim.place, *problem.split(": ", 1))
     try:
-        for c in (claim, *(varied(claim, n) for n in apart(claim))):
+        whole = [of_stance(claim, s.name) for s in claim.stances] if claim.stances[0].name else [claim]
+        for c in (*whole, *(varied(claim, n) for n in apart(claim))):
             undefined = undefined_point(c)
             if undefined is not None:
                 raise ClaimError.of(claim.place, *undefined)
@@ -51,7 +53,9 @@ def prove(claim: Claim, watch: Watch | None = None) -> Certificate:
 
 def _proved(claim: Claim, watch: Watch) -> Certificate:
     """The certificate of a claim that can be used: tried at smaller gaps while that may decide a requirement."""
-    kind = SeveralAttempt if len(claim.stances[0].states) > 1 else Attempt
+    kind: type[Attempt] = SeveralAttempt if len(claim.stances[0].states) > 1 else Attempt
+    if claim.stances[0].name:
+        kind = GraphAttempt
     gap = to_float(claim.gap)
     until = time.monotonic() + to_float(claim.seconds)
     sharp = claim.route == "curve" or any(r.kind == "sharp_bound" for r in claim.requirements)

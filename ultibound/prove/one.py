@@ -18,7 +18,7 @@ from ..certificate.results import assembled
 from ..checker.derive import Derivation
 from ..checker.derive import varied as statement_varied
 from ..checker.flows import Flows
-from ..checker.outcomes import results_of
+from ..checker.graph_outcomes import results_of
 from ..checker.reals import Undefined
 from ..checker.rules import Rejected
 from ..checker.theorems import levels, movement, sharpest
@@ -354,7 +354,7 @@ class Attempt:
             self.pairs[route] = self.writer.theorem(route, route, uses, concludes)
 
     def _curve(self, domain: Domain, on: int, moves: list[Proved] | None, lost: bool) -> None:
-        """Shells of the error curve, the line above them and the sharp bound: proofs/curve.md. A smaller ball to try."""
+        """Shells of the error curve, the line above them and the sharp bound: proofs/curve.md.."""
         o, w, claim = self.obligations, self.writer, self.claim
         cells = prod(len(v.cells) for v in o.slope(domain).variables)
         if moves is None or (cells > MOST_ROUGH and not self.sharp):  # over so many even a rough curve would cost more
@@ -446,7 +446,7 @@ class Attempt:
 
     def _target_inside(self, s: str, region: tuple[Fraction, Fraction]) -> None:
         for n, line in self.writer.proof.lines.items():
-            met = (line.rule, line.proves) == ("point", f"target[{s}]")
+            met = (line.part, line.rule, line.proves) == (self.writer.part, "point", f"target[{s}]")
             if met and (line.concludes["lower"] > region[1] or line.concludes["upper"] < region[0]):
                 at = self.writer.raw[n - 1]["witness"]["at"]
                 where = ", ".join(f"{k} = {float(Fraction(v)):.6g}" for k, v in at.items() if not v.startswith("#"))

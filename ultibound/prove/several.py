@@ -30,6 +30,7 @@ from ..contraction.norms import Matrices, Norm, Stretched, stretched
 from ..contraction.rounds import MOST_HELD, Map, courses
 from ..contraction.samples import combinations, drawn
 from ..contraction.words import Word, fastest
+from .closing import chain_over, closed_in
 from .one import COARSE, DECIDED, Attempt
 
 if TYPE_CHECKING:
@@ -56,6 +57,7 @@ class SeveralAttempt(Attempt):
     norm: Metric
     domain: Domain
     needed = 0  # leaves that showed the ball to be kept
+    shrunk = False  # whether the ball is smaller than the largest in the region
 
     def _prove(self) -> None:
         """Lines for the set and its metric, gain and residual, bounds by state, and the requirements."""
@@ -67,7 +69,7 @@ class SeveralAttempt(Attempt):
         self._settled(images)
         number = w.metric(self.chosen.kind, self.chosen.rows, self.chosen.inverse)
         lines = [t.line for t in self.targets]
-        ball = w.about(number, lines, self.domain.radius)
+        ball = w.about(number, lines, self.domain.radius, not self.shrunk)
         found = w.proof.lines[ball].domain
         on = ball
         if images is not None:
@@ -90,6 +92,8 @@ class SeveralAttempt(Attempt):
         if invariant is not None and moves is not None:
             for table in tables:
                 w.componentwise(invariant, *table, moves)
+            if slopes is not None and misses is not None:
+                closed_in(self, invariant, misses, moves, list(self._bases()))
         for k, r in enumerate(self.claim.requirements, 1):
             if r.kind in RANGED and not self.variant:
                 self._range(k, through, way, self.domain, on)
@@ -162,20 +166,20 @@ class SeveralAttempt(Attempt):
         for share in SHARES:
             smaller = self._within(self.norm, Fraction(f"{to_float(self.domain.radius) * share:.4g}"))
             if self._size(self.chosen, smaller) < np.inf:
-                self.domain = smaller
+                self.domain, self.shrunk = smaller, True
                 return
 
     def _proposed(self, domain: Domain) -> list[Proposal]:
         """Metrics proposed from samples of Jacobians and misses over a set (estimates)."""
         rng = np.random.default_rng(0)
-        room = np.array([to_float(x) for x in self._rooms()])
+        room = np.array([to_float(x) for x in self.rooms()])
         # a target on the edge: any scale will do
         room = np.where(room > 0, room, max(float(room.max()), 0.0) or 1.0)
         weights, asked = self._weights(), self.claim.metric
         self.others, found = [], list[Proposal]()
         for steps in ("@1", "") if self.claim.horizon > 1 else ("",):  # each of the steps has to keep the ball as well
-            slopes, misses = self._matrices(f"slopes{steps}", domain), self._matrices(f"misses{steps}", domain)
-            jacobians, missed = (self._sampled(m, rng) for m in (slopes, misses))
+            slopes, misses = self.matrices(f"slopes{steps}", domain), self.matrices(f"misses{steps}", domain)
+            jacobians, missed = (self.sampled(m, rng) for m in (slopes, misses))
             self.others += [scaled(p) for p in proposals(jacobians, missed[:, :, 0], room)]
             if weights is not None:
                 found += proposals(jacobians, missed[:, :, 0], room, "box", weights)
@@ -183,21 +187,21 @@ class SeveralAttempt(Attempt):
                 found += [scaled(p) for p in proposals(jacobians, missed[:, :, 0], room, asked)]
         return found if weights is not None or asked != "auto" else self.others
 
-    def _sampled(self, matrices: Matrices, rng: np.random.Generator) -> Floats:
+    def sampled(self, matrices: Matrices, rng: np.random.Generator) -> Floats:
         at = drawn(Obligation("samples", 0, "", tuple(matrices.variables), False), SAMPLES, rng)
         found = matrices.at(matrices.into(at))
         good: Floats = found[np.isfinite(found).all(axis=(1, 2))]
         return good
 
-    def _rooms(self) -> list[Fraction]:
+    def rooms(self) -> list[Fraction]:
         """How far the target of each state is from the edge of its region, at least."""
         regions = [self.writer.derivation.region(s)[1] for s in self.obligations.states]
         return [min(t.lower - low, high - t.upper) for t, (low, high) in zip(self.targets, regions, strict=True)]
 
     def _largest(self, norm: Metric) -> Fraction:
-        found = min(x / norm.support(i) for i, x in enumerate(self._rooms()))
+        found = min(x / norm.support(i) for i, x in enumerate(self.rooms()))
         if found < 0:
-            s = self.obligations.states[min(range(len(self.targets)), key=lambda i: self._rooms()[i])]
+            s = self.obligations.states[min(range(len(self.targets)), key=lambda i: self.rooms()[i])]
             place = self.claim.place, f"target.{s}"
             raise ClaimError.of(*place, "cannot be shown to lie inside the region; widen the region a little")
         return Fraction(downward(found))
@@ -207,11 +211,11 @@ class SeveralAttempt(Attempt):
         wide = tuple(norm.support(i) for i in range(len(spans)))
         return Domain("ball", radius, spans[0], beyond, spans, wide)
 
-    def _matrices(self, proves: str, domain: Domain, norm: Metric | None = None) -> Matrices:
+    def matrices(self, proves: str, domain: Domain, norm: Metric | None = None) -> Matrices:
         """The entries of a matrix over a set, ready to run."""
         o = self.obligations
         kind, _, after = proves.partition("@")
-        rows = [[o.miss(s, int(after or 0))] for s in o.states]
+        rows = [[self._miss(s, int(after or 0))] for s in o.states]
         if kind == "slopes":
             rows = [[o.slope(domain, s, x, int(after or 0)) for x in o.states] for s in o.states]
         ready = [[(x, self.ranges.runner(x, False)) for x in row] for row in rows]
@@ -219,6 +223,14 @@ class SeveralAttempt(Attempt):
             return Matrices(ready)
         names = [v.name for v in Matrices(ready).variables]
         return Matrices(ready, lambda x: self._into(x, names, domain, norm))
+
+    def _miss(self, s: str, steps: int = 0) -> Obligation:
+        return self.obligations.miss(s, steps)
+
+    def _form(self, proves: str, norm: Metric) -> Norm:
+        """The norm in which a matrix is seen."""
+        inverse = floats(norm.inverse) if proves.startswith("slopes") else None
+        return Norm(floats(norm.rows), inverse, norm.kind == "ellipsoid")
 
     def _into(self, x: Floats, names: list[str], domain: Domain, norm: Metric) -> Floats:
         """Points moved towards the target until they lie in the ball."""
@@ -237,7 +249,7 @@ class SeveralAttempt(Attempt):
             moved[:, k] = middle + error[:, i] * share
         return moved
 
-    def _searched(
+    def searched(
         self,
         proves: str,
         domain: Domain,
@@ -250,10 +262,7 @@ class SeveralAttempt(Attempt):
         def watch(leaves: int, high: float) -> None:
             self.watch(f"{proves} of {len(self.obligations.states)} states", leaves, high)
 
-        matrices = self._matrices(proves, domain, norm)
-        form = Norm(
-            floats(norm.rows), floats(norm.inverse) if proves.startswith("slopes") else None, norm.kind == "ellipsoid"
-        )
+        matrices, form = self.matrices(proves, domain, norm), self._form(proves, norm)
         effort = Effort(gap, cells, self.ranges.until - self.ranges.spent, watch, later=later)
         try:
             return stretched(matrices, form, effort, enough)
@@ -264,27 +273,27 @@ class SeveralAttempt(Attempt):
     def _size(self, p: Proposal, ball: Domain) -> float:
         """The largest share of its room that a state's bound takes; inf where the ball is not kept (estimates)."""
         norm = metric(p.kind, p.rows, p.inverse, len(self.obligations.states))
-        miss = self._searched("misses", ball, norm, COARSE, FEW).upper + self._shift(norm)
+        miss = self.searched("misses", ball, norm, COARSE, FEW).upper + self._shift(norm)
         radius = to_float(ball.radius)
         most = SPARE - miss / radius if radius > 0 else 0.0
         if not (most > 0 and miss < np.inf):
             return np.inf
-        found = self._searched("slopes", ball, norm, COARSE, FEW, most)
+        found = self.searched("slopes", ball, norm, COARSE, FEW, most)
         k = found.upper
         if not k <= most:
             return np.inf
         self.needed = found.leaves
         if not self._goes(ball, norm):
             return np.inf
-        shares = [to_float(norm.support(i)) / max(to_float(x), 1e-300) for i, x in enumerate(self._rooms())]
+        shares = [to_float(norm.support(i)) / max(to_float(x), 1e-300) for i, x in enumerate(self.rooms())]
         return miss / (1 - k) * max(shares)
 
     def _goes(self, ball: Domain, norm: Metric) -> bool:
         """Whether the steps within a horizon stay in the region (an estimate): proofs/horizon.md (2)."""
-        radius, rooms = to_float(ball.radius), [to_float(x) for x in self._rooms()]
+        radius, rooms = to_float(ball.radius), [to_float(x) for x in self.rooms()]
         for j in range(1, self.claim.horizon):
-            k = self._searched(f"slopes@{j}", ball, norm, COARSE, FEW).upper
-            far = k * radius + self._searched(f"misses@{j}", ball, norm, COARSE, FEW).upper + self._shift(norm)
+            k = self.searched(f"slopes@{j}", ball, norm, COARSE, FEW).upper
+            far = k * radius + self.searched(f"misses@{j}", ball, norm, COARSE, FEW).upper + self._shift(norm)
             if j == 1 and far <= radius * SPARE:
                 return True
             if not all(far * to_float(norm.support(i)) <= room * SPARE for i, room in enumerate(rooms)):
@@ -316,7 +325,7 @@ class SeveralAttempt(Attempt):
         bits = 0 if w.exact(proves, on) else BITS
         later = TWICE * w.matrix_seconds(proves, bits, on)
         for _ in range(4):
-            found = self._searched(proves, self.domain, self.norm, self.gap * share, cells, later=later)
+            found = self.searched(proves, self.domain, self.norm, self.gap * share, cells, later=later)
             began = time.monotonic()
             try:
                 leaves = w.leaves(proves, found.trees, bits, on)
@@ -373,7 +382,7 @@ class SeveralAttempt(Attempt):
         wanted = min((c for c in asked if upper is None or upper >= c), default=None)
         if wanted is None or self.ranges.interrupted or self.claim.horizon > 1:
             return
-        matrices = self._matrices("slopes", self.domain, self.norm)
+        matrices = self.matrices("slopes", self.domain, self.norm)
         bits = 0 if self.writer.exact("slopes", on) else BITS
         best: tuple[Word, list[dict[str, Fraction]]] | None = None
         for points in self._places(matrices.variables):
@@ -403,13 +412,17 @@ class SeveralAttempt(Attempt):
         self, slopes: tuple[int, tuple[str, ...], int] | None, misses: tuple[int, tuple[str, ...], int] | None, on: int
     ) -> list[tuple[int, int]]:
         """Lines of entries, of slopes and misses, a basis: proofs/several.md (3)."""
-        found = []
-        for basis in self._bases() if slopes is not None and misses is not None else ():
+        found: list[tuple[int, int]] = []
+        if slopes is None or misses is None:
+            return found
+        along = chain_over(self, self.domain, [to_float(x) for x in self.rooms()])
+        each: list[tuple[tuple[Matrix, Matrix], Matrix]] = [(basis, ()) for basis in self._bases()]
+        if along is not None:
+            each.append(((along.rows, along.inverse), along.beside))
+        for basis, beside in each:
             pair = []
-            for proves, known in (("slopes", slopes), ("misses", misses)):
-                if known is not None:
-                    leaves = self.leaves[proves]
-                    pair.append(self.writer.entries(proves, known[1], known[2], on, leaves, basis))
+            for proves, (_, trees, bits), z in (("slopes", slopes, beside), ("misses", misses, ())):
+                pair.append(self.writer.entries(proves, trees, bits, on, self.leaves[proves], basis, z))
             found.append((pair[0], pair[1]))
         return found
 

@@ -2,7 +2,9 @@
 
 from __future__ import annotations
 
+from collections.abc import Sequence
 from fractions import Fraction
+from itertools import zip_longest
 from typing import Any
 
 from rich.console import Console, Group, RenderableType
@@ -19,8 +21,13 @@ MOST = 12  # rows of cells
 STYLES = {"proved": "bold green", "refuted": "bold red", "undecided": "bold yellow"}
 
 
-def outcome(title: str, results: dict[str, Any], units: dict[str, str]) -> RenderableType:
-    """Quantities with what each gives away, then a row a requirement; `units` are the states'."""
+def outcome(
+    title: str, results: dict[str, Any], units: dict[str, str], asked: Sequence[str | None] = ()
+) -> RenderableType:
+    """Quantities with what each gives away, then a row a requirement; `units` are the states'.
+
+    `asked`: the stance that each requirement is about, where it is about one.
+    """
     quantities = Table(title=Text(title), title_justify="left", show_edge=False, pad_edge=False)
     for heading in ("quantity", "proved", "attained", "gives away", "unit"):
         quantities.add_column(heading)
@@ -35,19 +42,23 @@ def outcome(title: str, results: dict[str, Any], units: dict[str, str]) -> Rende
             sign = "≤ " if end == "upper" else "≥ "
             shown = (_figure(value[end], sign), _figure(value[other], ""), _given_away(value, end))
             quantities.add_row(name, *shown, of or "-")
-    inside = results["set"]
+    inside, stances = results["set"], results.get("stances", {})
     where = "no set that is mapped into itself" if inside is None else f"certified set: the {inside['kind']}"
-    if len(units) > 1:
+    if stances:
+        where = "no sets that are mapped into each other" if inside is None else f"{where} of every stance"
+    if len(units) > 1 and results["metric"] is not None:
         where += f"; norm: {_norm(results['metric'])}"
     verdicts = Table(show_edge=False, pad_edge=False)
     for heading in ("requirement", "verdict", "value"):
         verdicts.add_column(heading, overflow="fold")
-    for r in results["requirements"]:
+    for r, stance in zip_longest(results["requirements"], asked):
         row = Text(f"in [{_figure(r['value']['lower'], '')}, {_figure(r['value']['upper'], '')}]" if r["value"] else "")
         if r["limited_by"]:
             row.append(f"\n{r['limited_by']}")
-        verdicts.add_row(Text(r["that"]), Text(r["verdict"], STYLES[r["verdict"]]), row)
-    return Group(quantities, Text(where), *_routes(results, unit), Text(""), verdicts, Text(""), Text(CAUTION))
+        that = r["that"] + (f" in {stance}" if stance else "")
+        verdicts.add_row(Text(that), Text(r["verdict"], STYLES[r["verdict"]]), row)
+    more = [*_routes(results, unit), *(_stances(stances, units, results["metric"] is None) if stances else [])]
+    return Group(quantities, Text(where), *more, Text(""), verdicts, Text(""), Text(CAUTION))
 
 
 Row = tuple[str, Any, str, str]
@@ -105,6 +116,24 @@ def _routes(results: dict[str, Any], unit: str) -> list[RenderableType]:
         shown = [_figure(route[q]["upper"], "≤ ") if route[q] else "none" for q in ("gain", "residual", "bound")]
         table.add_row(name, *shown, "reported" if name == results["route"] else "")
     return [Text(""), table]
+
+
+def _stances(stances: dict[str, Any], units: dict[str, str], apart: bool) -> list[RenderableType]:
+    """Each stance on its own: its states' bounds, radii and pushes; `apart`: its norm, where they differ."""
+    table = Table(show_edge=False, pad_edge=False)
+    for heading in ("stance", "state", "target", "bound", "radius", "push", "unit"):
+        table.add_column(heading)
+    for name, one in stances.items():
+        for s, figures in one["states"].items():
+            centre = one["set"]["centre"][s] if one["set"] is not None else None
+            ends = [] if centre is None else [f"{float(centre[e]):.4g}" for e in ("lower", "upper")]
+            shown = [
+                f"{sign}{float(figures[x][end]):.7g}" if figures[x] and figures[x][end] else "none"
+                for x, sign, end in (("bound", "≤ ", "upper"), ("radius", "≥ ", "lower"), ("push", "≥ ", "lower"))
+            ]
+            table.add_row(name, s, " to ".join(dict.fromkeys(ends)) or "?", *shown, units[s] or "-")
+    norms = [Text(f"norm in {name}: {_norm(one['metric'])}") for name, one in stances.items() if apart]
+    return [Text(""), table, *norms]
 
 
 def cells(found: list[Cell], unit: str, wanted: float | None = None) -> RenderableType:

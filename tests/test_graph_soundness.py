@@ -1,0 +1,31 @@
+"""A seeded campaign of random claims of two and three stances against trajectories steered at their bounds."""
+
+from __future__ import annotations
+
+import os
+from collections.abc import Callable
+
+import pytest
+
+from tests.graph_campaign import Tally, run
+
+LONG = bool(os.environ.get("ULTIBOUND_LONG"))
+CLAIMS, BLOCK = (180 if LONG else 18), 9
+
+
+@pytest.fixture(scope="module")
+def tally() -> Tally:
+    return Tally()
+
+
+@pytest.mark.parametrize("first", range(0, CLAIMS, BLOCK))
+def test_nothing_simulated_goes_beyond_what_is_proved(first: int, tally: Tally) -> None:
+    for seed in range(first, first + BLOCK):
+        run(seed, tally)
+
+
+def test_most_claims_that_contract_get_bounds(tally: Tally, record_property: Callable[[str, str], None]) -> None:
+    """At least two in three of the claims that simulation shows to contract."""
+    record_property("table", tally.table())
+    assert tally.contracting > CLAIMS / 2
+    assert tally.bounded >= tally.contracting * 2 / 3

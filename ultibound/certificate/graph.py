@@ -1,0 +1,164 @@
+"""Lines about stances that follow one another, in the making (proofs/graph.md)."""
+
+from __future__ import annotations
+
+from collections.abc import Mapping, Sequence
+from dataclasses import replace
+from fractions import Fraction
+from typing import Any
+
+from ..checker.graph import across, largest, of_part
+from ..checker.matrices import Leaf, Matrix, Metric
+from ..checker.rules import Proof, Rejected
+from ..checker.several import moved, movements
+from .lines import upward
+from .norms import NormWriter, solved, texts
+
+Step = tuple[str, str]
+Basis = tuple[Matrix, Matrix]
+ROUNDS = 60  # of choosing, for each stance, the step before it that asks for most
+LARGEST = 40  # rows of all bases together, up to which a comparison is solved exactly
+
+
+class StanceWriter(NormWriter):
+    """Lines about one stance (or, with no name, about all of them) of one proof."""
+
+    def __init__(self, proof: Proof, raw: list[dict[str, Any]], part: str) -> None:
+        self.proof, self.raw, self.part, self.flow = proof, raw, part, None
+        self.derivation = of_part(proof.graph, 0, part)
+
+
+class StepWriter(StanceWriter):
+    """Lines about the step from a stance to the one that follows."""
+
+    def __init__(self, before: StanceWriter, after: StanceWriter, norm: int) -> None:
+        """`norm`: the line of the metric of the stance that follows."""
+        super().__init__(before.proof, before.raw, f"{before.part}>{after.part}")
+        self.flow, self.norm = before.flow, norm
+
+    def rests(self, proves: str, on: int) -> list[int]:
+        first, *flow = super().rests(proves, on)
+        return [first, self.norm, *flow]
+
+    def seen(self, proves: str, on: int) -> tuple[Metric, Metric]:
+        before, after = super().seen(proves, on)[0], self.proof.lines[self.norm].metric
+        if after is None:
+            raise ValueError("no metric")
+        return before, across(before, after, proves)
+
+    def _measured(
+        self, rule: str, proves: str, on: int, witness: dict[str, Any], concludes: dict[str, str], basis: Basis | None
+    ) -> int:
+        number = super()._measured(rule, proves, on, witness, concludes, None)
+        self.proof.lines[number] = replace(self.proof.lines[number], metric=self.proof.lines[self.norm].metric)
+        return number
+
+    def table(
+        self, proves: str, trees: Sequence[str], bits: int, on: int, leaves: list[Leaf], before: Basis, after: Basis
+    ) -> int:
+        """The largest entries of a matrix in a basis of each of the two stances."""
+        found, _ = largest(leaves, (after[0], before[1]), proves)
+        bases = {x: {"rows": texts(y[0]), "inverse": texts(y[1])} for x, y in (("before", before), ("after", after))}
+        concludes = {k: upward(x) for k, x in found.items()}
+        number = self._measured(
+            "graph-entries", proves, on, {"bits": bits, "trees": list(trees), **bases}, concludes, None
+        )
+        self.proof.lines[number] = replace(self.proof.lines[number], bases=(before, after))
+        return number
+
+
+class GraphWriter(StanceWriter):
+    """Lines about all stances together."""
+
+    def bound(self, invariant: int, steps: Mapping[Step, int]) -> int | None:
+        """The bound in the norm of each stance; None where the steps do not contract together."""
+        pairs = {e: self.proof.lines[n].concludes for e, n in steps.items()}
+        k = {e: ((x["gain"],),) for e, x in pairs.items()}
+        p = least_above(k, {e: [Fraction(1)] for e in k})
+        b = least_above(k, {e: [x["residual"]] for e, x in pairs.items()})
+        if p is None or b is None:
+            return None
+        concludes = {s: upward(x[0]) for s, x in b.items()}
+        return self._appended("graph-bound", "bound[slope]", [invariant, *steps.values()], {"p": p, "b": b}, concludes)
+
+    def compared(
+        self, invariant: int, tables: Mapping[Step, tuple[int, int]], moves: Sequence[int], bases: Mapping[str, Basis]
+    ) -> int | None:
+        """A bound for each state in each stance by comparison; None where the entries do not contract."""
+        g, lines = self.proof.graph, self.proof.lines
+        if g is None:
+            raise ValueError("no stances")
+        far, waiting = {}, iter(moves)
+        for name, d in g.stances.items():
+            far[name] = moved(d, [lines[next(waiting)] for _ in movements(d)])
+        k: dict[Step, Matrix] = {}
+        residual: dict[Step, list[Fraction]] = {}
+        for (s, t), (slopes, misses) in tables.items():
+            rows, m = bases[t][0], range(1, len(bases[s][0]) + 1)
+            entries, missed = lines[slopes].concludes, lines[misses].concludes
+            k[s, t] = tuple(tuple(entries[f"{i},{j}"] for j in m) for i in range(1, len(rows) + 1))
+            residual[s, t] = [
+                missed[f"{i},1"] + sum((abs(x) * y for x, y in zip(row, far[t], strict=True)), Fraction(0))
+                for i, row in enumerate(rows, 1)
+            ]
+        if sum(len(rows) for rows, _ in bases.values()) > LARGEST:
+            return None
+        p = least_above(k, {e: [Fraction(1)] * len(x) for e, x in residual.items()})
+        b = least_above(k, residual)
+        if p is None or b is None:
+            return None
+        concludes = {}
+        for name, d in g.stances.items():
+            for s, row in zip(d.states, bases[name][1], strict=True):
+                x = sum((abs(x) * y for x, y in zip(row, b[name], strict=True)), Fraction(0))
+                concludes[f"{name}:{s}"] = upward(x)
+        uses = [invariant, *(n for pair in tables.values() for n in pair), *moves]
+        return self._appended("graph-componentwise", "componentwise", uses, {"p": p, "b": b}, concludes)
+
+    def _appended(
+        self, rule: str, proves: str, uses: list[int], vectors: Mapping[str, Mapping[str, Sequence[Fraction]]],
+        concludes: dict[str, str],
+    ) -> int | None:  # fmt: skip
+        witness = {x: {s: [str(q) for q in v] for s, v in each.items()} for x, each in vectors.items()}
+        try:
+            return self.append(rule, proves, uses, witness, concludes)
+        except Rejected:
+            return None
+
+
+def least_above(
+    k: Mapping[Step, Matrix], residual: Mapping[Step, Sequence[Fraction]]
+) -> dict[str, list[Fraction]] | None:
+    """The least b >= 0 with K b + residual <= b of the next on every step, exactly; None where there is none.
+
+    Policies: each row of b is met with equality by one step, the one that asked for most so far (Howard 1960).
+    """
+    size = {s: len(x[0]) for (s, _), x in k.items()}
+    rank = {(s, i): n for n, (s, i) in enumerate((s, i) for s, m in size.items() for i in range(m))}
+    chosen: dict[tuple[str, int], Step] = {}
+    for step in k:
+        for i in range(size[step[1]]):
+            chosen.setdefault((step[1], i), step)
+    b = [Fraction(0)] * len(rank)
+    for _ in range(ROUNDS):
+        table = [[Fraction(0)] * len(rank) for _ in rank]
+        right = [Fraction(0)] * len(rank)
+        for (t, i), (s, _) in chosen.items():
+            for j, x in enumerate(k[s, t][i]):
+                table[rank[t, i]][rank[s, j]] = x
+            right[rank[t, i]] = residual[s, t][i]
+        (found,) = solved(tuple(map(tuple, table)), right)
+        if found is None or min(found) < 0:
+            return None
+        b, better = found, False
+        for (s, t), rows in k.items():
+            for i, row in enumerate(rows):
+                asked = sum((x * b[rank[s, j]] for j, x in enumerate(row)), residual[s, t][i])
+                if asked > b[rank[t, i]] and chosen[t, i] != (s, t):
+                    now = chosen[t, i][0]
+                    held = sum((x * b[rank[now, j]] for j, x in enumerate(k[now, t][i])), residual[now, t][i])
+                    if asked > held:
+                        chosen[t, i], better = (s, t), True
+        if not better:
+            return {s: [b[rank[s, i]] for i in range(m)] for s, m in size.items()}
+    return None

@@ -1,0 +1,77 @@
+"""What limits a requirement about stances that follow one another, said to people. Nothing here is proved."""
+
+from __future__ import annotations
+
+from collections.abc import Mapping
+from dataclasses import dataclass
+
+from ..checker.results import Outcome, Results
+from ..claim import Claim
+from ..claim.constants import constant
+from ..claim.model import Requirement
+from ..claim.obligations import RANGED, Obligations
+from .remarks import STOPS
+
+
+@dataclass(frozen=True)
+class StanceRemarks:
+    """Remarks on the requirements of a claim of stances."""
+
+    claim: Claim
+    obligations: Mapping[str, Obligations]
+    results: Results
+    limits: Mapping[str, str]
+    interrupted: bool
+
+    def all(self) -> list[tuple[str | None, bool]]:
+        """A remark (or none) and whether to pursue, a requirement."""
+        return [self.remark(n) for n in range(1, len(self.claim.requirements) + 1)]
+
+    def remark(self, number: int) -> tuple[str | None, bool]:
+        r, outcome = self.claim.requirements[number - 1], self.results.requirements[number - 1]
+        asked = [name for name in self.obligations if r.stance in (None, name)]
+        parts = []
+        left = sorted({n for name in asked for n in self.obligations[name].leaves_out(r)})
+        if left:
+            parts.append(f"over leaves out values of {', '.join(left)} that occur")
+        elif self.results.leaves_out(self.results.statement.requirements[number - 1]):
+            parts.append("over sets a defined name free: its own expression is not used")
+        pursue = False
+        if outcome.verdict == "undecided":
+            pursue = self.open(r, outcome) and not self.interrupted
+            own = [f"{name}:require[{number}]" for name in asked]
+            names = own if r.kind in RANGED else [n for n in self.limits if ":require" not in n]
+            parts += [f"{n}: {STOPS.get(x, x)}" for n in names if (x := self.limits.get(n, ""))]
+            parts.append("interrupted" if self.interrupted else self.why(r))
+        return ("; ".join(p for p in parts if p)[:900] or None), pursue
+
+    def why(self, r: Requirement) -> str:
+        """The first thing that is missing."""
+        found = self.results
+        for name, x in found.stances().items():
+            if x.unsupported:
+                return f"{name}:support[{x.unsupported}], which the stance asks for, is not shown to be above 0"
+        if not found.settled:
+            gain, residual = found.gain.upper, found.residual.upper
+            size = "" if gain is None or residual is None else (
+                f": in the best norms found the largest gain of a step is {float(gain):.4g}, "
+                f"the largest residual {float(residual):.4g}"
+            )  # fmt: skip
+            return f"no sets that every step maps into those of the next were found{size}"
+        if not found.whole and r.kind not in ("radius", "steps"):
+            return "only smaller balls than the largest in the regions are kept; with `shrink = true` they would count"
+        if r.kind == "settles":
+            return "the bound is not below the radius of the set in every stance"
+        if r.kind == "steps":
+            return "no proved sequence of steps is as short"
+        if r.kind == "bound" and r.state is not None:
+            return "the constant lies beyond what is proved; orbits between stances are not looked for yet"
+        return "the constant lies beyond what is proved"
+
+    def open(self, r: Requirement, outcome: Outcome) -> bool:
+        """Whether what is proved and what is attained leave room for the constant."""
+        if r.constant is None or outcome.value is None:
+            return False
+        low, high = constant(r.constant, self.claim.values)
+        least, most = outcome.value.lower, outcome.value.upper
+        return least is not None and most is not None and least <= high and low <= most and least < most

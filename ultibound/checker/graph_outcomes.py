@@ -1,0 +1,360 @@
+"""What the lines about stances amount to: the largest over all of them, and each on its own (proofs/graph.md)."""
+
+from __future__ import annotations
+
+from fractions import Fraction
+from typing import Any
+
+from .derive import RANGED, Domain
+from .grammar import constant
+from .graph import Graph
+from .outcomes import SeveralResults
+from .results import GRAIN, LONG, MOST_STEPS, NOTHING, Outcome, Results, Route, Span, compared, less, opposed, verdict
+from .rules import Line, Proof, Rejected
+
+ROUNDS = 400  # steps for which what is attained on every step is added up
+Levels = dict[str, Fraction]  # an error in the norm of each stance
+
+
+class StanceResults(SeveralResults):
+    """One stance: its set and norm, and what all stances together prove of its states."""
+
+    def __init__(self, proof: Proof, graph: Graph, name: str, kept: dict[str, Domain] | None) -> None:
+        self.proof, self.variant, self.part, self.needed = proof, 0, name, set[int]()
+        self.derivation = graph.stances[name]
+        self.statement, self.states = self.derivation.statement, self.derivation.states
+        self.state, self.any = self.states[0], self.statement.shrink
+        balls = [x for rule in ("largest-ball", "smaller-ball") if (x := self.one(rule, "ball")) is not None]
+        if len(balls) != 1 or balls[0].domain is None or balls[0].domain.metric is None:
+            raise Rejected(f"{name}: the proof has not exactly one ball about the target")
+        self.ball, self.metric = balls[0], balls[0].domain.metric
+        self.domain = balls[0].domain if kept is None else kept[name]
+        if self.domain.metric != self.metric:
+            raise Rejected(f"{name}: the ball and the invariant set are of different metrics")
+        self.way = self.domain  # one step at a time
+        self.lasting = self.derivation.motion is None or self.above(1)
+        self.unsupported = 0 if self.lasting else 1
+        self.lasts = self.supported()
+        self.centres = {s: Span(*x) for s, x in zip(self.states, balls[0].domain.targets, strict=True)}
+        self.radius = Span(self.ball.concludes["radius"], self.ball.concludes.get("outer"))
+        self.gain = self.residual = NOTHING
+        self.bound: Span | None = None
+        self.sharp = self.push = None
+        self.orbits: dict[str, Fraction | None] = dict.fromkeys(self.states)
+
+    def leaves_for(self, after: StanceResults) -> bool:
+        """Whether a point leaves the region of the stance that follows."""
+        for s in self.states:
+            (low, high), _ = after.derivation.region(s)
+            for n, x in self.lines("point", f"image[{s}]"):
+                if x.concludes["lower"] > high or x.concludes["upper"] < low:
+                    self.needed.add(n)
+                    return True
+        return False
+
+    def stated(self) -> bool:
+        """Whether the claim itself fixes the norm: of one state it is the error."""
+        return len(self.states) == 1 or super().stated()
+
+    def placed(self, kind: str | None, whole: bool, settled: bool, partial: bool) -> None:
+        """What the sets of all stances together are."""
+        self.kind, self.whole, self.settled, self.partial = kind, whole, settled, partial
+        self.edges = {s: self.reached(s) for s in self.states if kind == "region"}
+        self.radii = {s: self.radius_along(s) for s in self.states}
+
+    def in_norm(self) -> Fraction | None:
+        """The bound in the norm of the stance."""
+        return None if self.bound is None else self.bound.upper
+
+    def bounded(self, bound: Span | None, by_state: dict[str, Fraction]) -> None:
+        """What is proved of the long run in this stance."""
+        self.bound, self.bounds = bound, dict(by_state)
+        for i, s in enumerate(self.states):
+            if bound is not None and bound.upper is not None:
+                by_norm = bound.upper * self.metric.support(i)
+                self.bounds[s] = min(by_norm, self.bounds.get(s, by_norm))
+        self.pushes = {s: self.pushed_along(s) for s in self.states}
+
+
+class StepResults(Results):
+    """Gain and residual of one step, proved and surely taken: proofs/graph.md (2)."""
+
+    def __init__(self, proof: Proof, before: StanceResults, after: StanceResults) -> None:
+        self.proof, self.variant, self.part, self.needed = proof, 0, f"{before.part}>{after.part}", set[int]()
+        self.before, line = before, self.one("slope", "slope")
+        self.shown = None if line is None else (line.concludes["gain"], line.concludes["residual"])
+        if line is not None and (line.domain != before.domain or line.metric != after.metric):
+            raise Rejected(f"{self.part}: gain and residual refer to another set or norm")
+        k, e = self.shown or (None, None)
+        # slopes by the state are those at constant signals only: proofs/stance.md (5)
+        self.gain = Span(self.stretched("slopes"), None if before.derivation.loose() else k)
+        self.residual = Span(self.stretched("misses"), e)
+
+    def stretched(self, proves: str) -> Fraction | None:
+        """The largest norm surely taken."""
+        lines = self.lines("stretch", proves) if self.before.lasting else []
+        found = [(x.concludes["lower"], n) for n, x in lines if x.domain == self.before.domain]
+        if not found:
+            return None
+        self.needed.add(max(found)[1])
+        return max(max(found)[0], Fraction(0))
+
+
+class GraphResults(Results):
+    """Everything `results` may claim of a claim of stances."""
+
+    def __init__(self, proof: Proof) -> None:
+        if proof.graph is None:
+            raise Rejected("no stances")
+        self.proof, self.graph, self.variant, self.needed = proof, proof.graph, 0, set[int]()
+        self.derivation, self.statement = self.graph.first, self.graph.statement
+        self.states, self.any = self.derivation.states, self.statement.shrink
+        invariant = self.one("graph-regions", "invariant") or self.one("graph-balls", "invariant")
+        kept = None if invariant is None else invariant.domains
+        self.each = {name: StanceResults(proof, self.graph, name, kept) for name in self.graph.stances}
+        self.settled = invariant is not None and all(x.lasts for x in self.each.values())
+        self.unsupported = max(x.unsupported for x in self.each.values())
+        self.kind, self.whole = self.set_of(invariant if self.settled else None)
+        # smaller balls that are not kept, or a stance that is not shown to last, are no sets to speak of
+        small = any(x.ball.rule == "smaller-ball" or not x.lasting for x in self.each.values())
+        self.partial = not self.settled and (small or invariant is not None)
+        for x in self.each.values():
+            x.placed(self.kind, self.whole, self.settled, self.partial)
+        self.onward = {} if self.partial else self.of_steps()
+        bounds = self.bounds()
+        compared_by_state = self.comparisons()
+        for name, x in self.each.items():
+            x.bounded(bounds.get(name), compared_by_state.get(name, {}))
+        self.radius = least([x.radius for x in self.each.values()])
+        route = self.largest(list(self.each))
+        self.gain, self.residual, self.bound = route.gain, route.residual, route.bound
+        self.routes = {"slope": route} if self.onward else {}
+        self.reported, self.sharp, self.best, self.push = "slope", None, None, None
+        self.requirements = [self.required(n, r) for n, r in enumerate(self.statement.requirements, 1)]
+        self.needed |= {n for x in (*self.each.values(), *self.onward.values()) for n in x.needed}
+
+    def stances(self) -> dict[str, Results]:
+        return dict(self.each)
+
+    def leaves_out(self, r: Any) -> bool:
+        return any(x.derivation.leaves_out(r) for x in self.asked(r))
+
+    def set_of(self, invariant: Line | None) -> tuple[str | None, bool]:
+        """Its kind, and whether requirements may refer to it: proofs/graph.md (3)."""
+        if invariant is None:
+            return None, False
+        if invariant.rule == "graph-regions":
+            return "region", True
+        wide = all(x.ball.concludes["radius"] > 0 for x in self.each.values())
+        largest = all(x.ball.rule == "largest-ball" for x in self.each.values())
+        if largest and wide and any(self.each[s].leaves_for(self.each[t]) for s, t in self.graph.steps):
+            return "ball", True
+        return "smaller ball", self.statement.shrink and wide
+
+    def of_steps(self) -> dict[tuple[str, str], StepResults]:
+        """Every step from a stance to the next; none where one is not proved."""
+        found = {(s, t): StepResults(self.proof, self.each[s], self.each[t]) for s, t in self.graph.steps}
+        return found if all(x.shown is not None for x in found.values()) else {}
+
+    def bounds(self) -> dict[str, Span]:
+        """proofs/graph.md (4): the bound in the norm of each stance; from below what the steps surely add up to."""
+        line = self.one("graph-bound", "bound[slope]")
+        if line is None or not self.settled or not self.onward:
+            return {}
+        least = dict.fromkeys(self.each, Fraction(0))
+        pairs = {step: (x.gain.lower, x.residual.lower) for step, x in self.onward.items()}
+        known = all(k is not None and e is not None for k, e in pairs.values())
+        for _ in range(ROUNDS if known else 0):
+            before = dict(least)
+            for (s, t), (k, e) in pairs.items():
+                sum_ = (k or 0) * before[s] + (e or 0)
+                least[t] = max(least[t], Fraction(sum_ * GRAIN // 1, GRAIN))
+            if least == before:
+                break
+        return {s: Span(least[s] if known else None, line.concludes[s]) for s in self.each}
+
+    def comparisons(self) -> dict[str, dict[str, Fraction]]:
+        """proofs/graph.md (5): the least bound of each state in each stance by comparison."""
+        found: dict[str, dict[str, Fraction]] = {}
+        lines = self.lines("graph-componentwise", "componentwise") if self.settled else []
+        for name, d in self.graph.stances.items():
+            for s in d.states if lines else ():
+                least, n = min((line.concludes[f"{name}:{s}"], n) for n, line in lines)
+                found.setdefault(name, {})[s] = least
+                self.needed.add(n)
+        for _, line in lines:
+            if line.domains != {name: x.domain for name, x in self.each.items()}:
+                raise Rejected("the comparison refers to other sets")
+        return found
+
+    def largest(self, names: list[str]) -> Route:
+        """Gain and residual of the steps that leave these stances, and the bounds in them: the largest."""
+        steps = [x for (s, _), x in self.onward.items() if s in names]
+        bounds = [self.each[s].bound for s in names]
+        gain, residual = most([x.gain for x in steps]), most([x.residual for x in steps])
+        known = [x for x in bounds if x is not None]
+        return Route(gain, residual, most(known) if len(known) == len(bounds) else None)
+
+    def asked(self, r: Any) -> list[StanceResults]:
+        """The stances that a requirement is about."""
+        return [x for name, x in self.each.items() if r.stance in (None, name)]
+
+    def required(self, number: int, r: Any) -> Outcome:
+        several = self.asked(r)
+        if r.kind in RANGED:
+            return together([x.ranged(number, r) for x in several])
+        if r.over:
+            return Outcome("undecided", None)
+        if r.kind == "settles":
+            return self.inside(several)
+        c = constant(r.constant, self.statement.values)
+        if r.kind == "radius":
+            span = self.wide(several, r.state)
+            return verdict(span is not None and compared(r.relation, Span(span.lower, None), c), False, span)
+        if r.kind == "push":
+            spans = [] if r.during else [x.pushes[r.state] for x in several]
+            span = least([x for x in spans if x is not None]) if spans and None not in spans else None
+            return verdict(span is not None and less(c[1], span.lower), False, span)
+        if r.kind == "steps":
+            return self.counted(several, r, c)
+        if r.state is not None:  # by the best argument, for either name
+            spans = [x.long_run(r.state) for x in several]
+            span = most([x for x in spans if x is not None]) if None not in spans else None
+            return verdict(
+                self.whole and span is not None and compared(r.relation, Span(None, span.upper), c), False, span
+            )
+        return self.in_norms(several, r, c)
+
+    def in_norms(self, several: list[StanceResults], r: Any, c: tuple[Fraction, Fraction]) -> Outcome:
+        """Gain, residual and bound: several.md (4), (5e), in the norms of the stances."""
+        route = self.largest([x.part for x in several])
+        found = {"bound": route.bound, "gain": route.gain, "residual": route.residual}.get(r.kind)
+        upper = Span(None, None if found is None else found.upper)
+        means = r.kind == "gain" or all(x.meant() for x in self.each.values())
+        proved = self.whole and compared(r.relation, upper, c) and means
+        # in a metric the claim fixes, what is surely taken settles it; in another norm it might be less
+        final = self.fixed() and not self.any and not self.partial and r.kind != "bound" and found is not None
+        final &= r.kind != "gain" or self.statement.route == "slope" or not self.statement.correction
+        return verdict(proved, final and opposed(r.relation, Span(None, found.lower if found else None), c), found)
+
+    def fixed(self) -> bool:
+        """Whether the claim itself fixes the norms."""
+        return all(x.stated() for x in self.each.values())
+
+    def inside(self, several: list[StanceResults]) -> Outcome:
+        """proofs/graph.md (4): a bound inside the set of every stance, in its norm or state by state."""
+        ok, bounds = self.whole, list[Fraction]()
+        for x in several:
+            near = x.within()
+            if self.kind == "region":
+                ok &= all(less(x.bounds.get(s), x.edges[s].lower) for s in x.states)
+            else:
+                ok &= less(near, x.radius.lower)
+            bounds += [near] if near is not None else []
+        return verdict(ok, False, Span(None, max(bounds)) if len(bounds) == len(several) else None)
+
+    def wide(self, several: list[StanceResults], state: str | None) -> Span | None:
+        """How far a start may be from the target, of a state or in the norm."""
+        spans = [x.radii[state] if state is not None else x.radius for x in several] if self.settled else [None]
+        return least([x for x in spans if x is not None]) if None not in spans else None
+
+    def counted(self, several: list[StanceResults], r: Any, c: tuple[Fraction, Fraction]) -> Outcome:
+        """proofs/graph.md (6): steps after which a state stays within `to`, from any of these stances."""
+        start, end = (constant(e, self.statement.values) for e in (r.start, r.end))
+        i, limit, count = self.states.index(r.state), self.wide(several, r.state), None
+        if limit is not None and less(start[1], limit.lower, equal=True) and end[0] >= 0:
+            levels = {x.part: start[1] * x.metric.unit(i)[1] for x in several}
+            wanted = self.below({name: end[0] / x.metric.support(i) for name, x in self.each.items()})
+            count = None if wanted is None else self.count_of(levels, wanted)
+        proved = count is not None and compared(r.relation, Span(None, Fraction(count)), c)
+        return verdict(proved, False, None if count is None else Span(None, Fraction(count)))
+
+    def below(self, wanted: Levels) -> Levels | None:
+        """Levels no higher that are mapped below themselves on every step."""
+        pairs = self.pairs()
+        found = dict(wanted)
+        for _ in self.each if pairs else ():
+            for (s, t), (k, e) in pairs.items():
+                if k > 0:
+                    found[s] = min(found[s], (found[t] - e) / k)
+        kept = all(k * found[s] + e <= found[t] for (s, t), (k, e) in pairs.items())
+        return found if pairs and kept and min(found.values()) >= 0 else None
+
+    def count_of(self, levels: Levels, wanted: Levels) -> int | None:
+        pairs = self.pairs()
+        for n in range(MOST_STEPS // len(pairs)):
+            if all(x <= wanted[s] for s, x in levels.items()):
+                return n
+            after: Levels = {}
+            for (s, t), (k, e) in pairs.items():
+                if s in levels:
+                    after[t] = max(after.get(t, Fraction(0)), rounded(k * levels[s] + e))
+            levels = after
+        return None
+
+    def pairs(self) -> dict[tuple[str, str], tuple[Fraction, Fraction]]:
+        """Gain and residual of every step, proved."""
+        return {step: x.shown for step, x in self.onward.items() if x.shown is not None}
+
+    def by_state(self) -> dict[str, dict[str, Span | None]]:
+        found: dict[str, dict[str, Span | None]] = {}
+        figures = [x.by_state() for x in self.each.values()]
+        for s in self.states:
+            found[s] = {}
+            for name, worst in (("bound", most), ("sharp_bound", most), ("radius", least), ("push", least)):
+                spans = [x for each in figures if (x := each[s][name]) is not None]
+                found[s][name] = worst(spans) if len(spans) == len(figures) else None
+        return found
+
+    def targets(self) -> dict[str, Span]:
+        """The hull of the targets of all stances."""
+        return {s: hull([x.centres[s] for x in self.each.values()]) for s in self.states}
+
+    def norm(self) -> Any:
+        """The metric, where it is the same in every stance."""
+        found = [x.norm() for x in self.each.values()]
+        return found[0] if all(x == found[0] for x in found) else None
+
+
+def rounded(x: Fraction) -> Fraction:
+    return Fraction(-((-x * GRAIN) // 1), GRAIN) if x.denominator.bit_length() > LONG else x
+
+
+def most(spans: list[Span]) -> Span:
+    """The largest of several quantities: from below by any of them, from above by all."""
+    lowers = [x.lower for x in spans if x.lower is not None]
+    uppers = [x.upper for x in spans if x.upper is not None]
+    return Span(max(lowers, default=None), max(uppers) if spans and len(uppers) == len(spans) else None)
+
+
+def least(spans: list[Span]) -> Span:
+    """The smallest of several quantities: from above by any of them, from below by all."""
+    lowers = [x.lower for x in spans if x.lower is not None]
+    uppers = [x.upper for x in spans if x.upper is not None]
+    return Span(min(lowers) if spans and len(lowers) == len(spans) else None, min(uppers, default=None))
+
+
+def hull(spans: list[Span]) -> Span:
+    """Ends between which all of them lie."""
+    lowers = [x.lower for x in spans if x.lower is not None]
+    uppers = [x.upper for x in spans if x.upper is not None]
+    return Span(min(lowers) if len(lowers) == len(spans) else None, max(uppers) if len(uppers) == len(spans) else None)
+
+
+def together(outcomes: list[Outcome]) -> Outcome:
+    """A range in several stances: proved in all of them, or refuted in one."""
+    values = [x.value for x in outcomes if x.value is not None]
+    taken = [x.attained for x in outcomes if x.attained is not None]
+    lowers = [x.lower for x in taken if x.lower is not None]
+    uppers = [x.upper for x in taken if x.upper is not None]
+    found = [x.verdict for x in outcomes]
+    decided = "refuted" if "refuted" in found else "proved" if set(found) == {"proved"} else "undecided"
+    value = hull(values) if len(values) == len(outcomes) else None
+    return Outcome(decided, value, Span(min(lowers, default=None), max(uppers, default=None)))
+
+
+def results_of(proof: Proof) -> Results:
+    """What a proof amounts to: of one state, of several, or of named stances."""
+    if proof.graph is not None:
+        return GraphResults(proof)
+    return SeveralResults(proof) if len(proof.derivation.states) > 1 else Results(proof)

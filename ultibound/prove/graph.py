@@ -1,0 +1,261 @@
+"""Claims of stances that follow one another: targets → sets and norms → every step → bounds (proofs/graph.md)."""
+
+from __future__ import annotations
+
+from collections.abc import Mapping
+from fractions import Fraction
+from math import floor, log10
+from typing import Any
+
+import numpy as np
+
+from ..bounding.evaluate import to_float
+from ..certificate.certificate import sealed
+from ..certificate.enclosing import Encloser, Watch
+from ..certificate.graph import Basis, GraphWriter, Step
+from ..certificate.results import assembled
+from ..certificate.stances import StanceRemarks
+from ..checker.derive import Derivation
+from ..checker.graph_outcomes import results_of
+from ..checker.rules import Proof, Rejected, proof_of
+from ..checker.statement import read_statement
+from ..claim import Claim
+from ..claim.obligations import RANGED, Domain
+from ..contraction.graph import Family, Samples, bounds, families, radii
+from .one import COARSE, DECIDED, Attempt, Known
+from .several import SHARES, SPARE, floats
+from .stances import StanceSearch, StepSearch
+
+TRIED = 6  # families of norms, the best by samples first
+WIDENED = 5  # times that smaller balls are widened
+Pairs = Mapping[Step, tuple[float, float]]
+
+
+class GraphAttempt(Attempt):
+    """One pass through the proof of a claim of named stances at one gap."""
+
+    writer: GraphWriter
+
+    def __init__(
+        self, claim: Claim, gap: float, until: float, watch: Watch, sharp: bool, within: Fraction | None = None,
+        variant: int = 0, derivation: Derivation | None = None, known: Known | None = None,
+    ) -> None:  # fmt: skip
+        self.claim, self.gap, self.until, self.watch, self.sharp, self.variant = (
+            claim,
+            gap,
+            until,
+            watch,
+            sharp,
+            variant,
+        )
+        self.proof: Proof = proof_of(read_statement(claim.text, claim.settings, claim.data))
+        self.raw: list[dict[str, Any]] = []
+        self.writer = GraphWriter(self.proof, self.raw, "")
+        self.enclosers: list[Encloser] = []
+        self.smaller, self.curve_may_help = None, False
+        flows = known if known is not None else {}
+        self.stances: dict[str, StanceSearch] = {}
+        for n, s in enumerate(claim.stances):
+            each: Known = {0: flows[n]} if n in flows else {}
+            self.stances[s.name] = StanceSearch(claim, s, self.writer, gap, until, watch, self.enclosers, each)
+            if each:
+                flows[n] = each[0]
+        self.steps = {
+            (s.name, t): StepSearch(self.stances[s.name], self.stances[t], until, self.enclosers)
+            for s in claim.stances
+            for t in s.then
+        }
+        self._prove()
+        self.results = results_of(self.proof)
+        limits = {f"{x.writer.named(n)}": y for x in self.stances.values() for n, y in x.ranges.limits.items()}
+        limits |= {f"{s}>{t}:{n}": y for (s, t), x in self.steps.items() for n, y in x.ranges.limits.items()}
+        self.ranges = self.enclosers[0]
+        self.ranges.limits = limits
+        self.ranges.spent = sum(x.spent for x in self.enclosers)
+        obligations = {name: x.obligations for name, x in self.stances.items()}
+        remarks = StanceRemarks(claim, obligations, self.results, limits, self.ranges.interrupted).all()
+        self.pursue = any(p for _, p in remarks)
+        self.decided = sum(r.verdict != "undecided" for r in self.results.requirements)
+        text = assembled(claim, self.results, remarks)
+        self.certificate = sealed(claim, text, self.writer.pruned(self.results.needed), self.ranges.interrupted)
+
+    def _prove(self) -> None:
+        """Sets and norms of all stances, gain and residual of every step, bounds, and what is asked."""
+        w, each = self.writer, self.stances
+        images = self._into_regions()
+        self._normed(images is not None)
+        norms = {s: x.writer.metric(x.chosen.kind, x.chosen.rows, x.chosen.inverse) for s, x in each.items()}
+        on: dict[str, int] = {}
+        for s, x in each.items():
+            on[s] = x.writer.about(norms[s], [t.line for t in x.targets], x.domain.radius, not x.shrunk)
+            x.about(on[s], images is not None)
+        sets, invariant = dict(on), self._regions(norms, images)
+        if invariant is not None:
+            on = dict.fromkeys(each, invariant)
+        for s, x in each.items():
+            o = x.obligations
+            for k in range(1, len(o.motion.positive) + 1 if o.motion is not None else 1):
+                x.ranges.enclose(o.support(k, x.domain), on[s], gap=DECIDED, side=-1)
+        moves = {s: x._movements() for s, x in each.items()}
+        lines: dict[Step, int] = {}
+        for (s, t), step in self.steps.items():
+            moving = moves[t]
+            found = step.proved(norms[t], on[s], moving) if moving is not None else None
+            if found is not None:
+                lines[s, t] = found
+        if len(lines) == len(self.steps):
+            if invariant is None:
+                invariant = self._balls([sets[s] for s in each], lines)
+            if invariant is not None:
+                w.bound(invariant, lines)
+                self._compared(invariant, on, moves)
+        for k, r in enumerate(self.claim.requirements, 1):
+            for s, x in each.items():
+                if r.kind in RANGED and r.stance in (None, s):
+                    x._ranged(k, x.domain, on[s], points=True)
+
+    def _regions(self, norms: Mapping[str, int], images: Mapping[str, list[int]] | None) -> int | None:
+        """The regions are mapped into those that follow, if their images show it: proofs/graph.md (3a)."""
+        if images is None:
+            return None
+        stances = self.stances.items()
+        uses = [n for s, x in stances for n in (norms[s], *(t.line for t in x.targets), *images[s])]
+        return self.writer.append("graph-regions", "invariant", uses, {}, {})
+
+    def _balls(self, balls: list[int], lines: Mapping[Step, int]) -> int | None:
+        """The balls are mapped into those that follow: proofs/graph.md (3b)."""
+        try:
+            return self.writer.append("graph-balls", "invariant", [*balls, *lines.values()], {}, {})
+        except Rejected:
+            return None
+
+    def _into_regions(self) -> dict[str, list[int]] | None:
+        """The lines that the region of each stance is mapped into those that may follow, if all are."""
+        found: dict[str, list[int]] = {}
+        for s, x in self.stances.items():
+            afters = [self.stances[t] for t in x.stance.then]
+            for gap in (COARSE, self.gap):
+                lines = x.led_into(afters, gap)
+                if lines is not None:
+                    found[s] = lines
+                    break
+                if x.leaves_region:
+                    return None
+        return found if len(found) == len(self.stances) else None
+
+    def _normed(self, regions: bool) -> None:
+        """Norms and balls for all stances: those with the least bounds, of shares of the room, that are kept."""
+        room = {s: np.array(x.room) for s, x in self.stances.items()}
+        weights = next(iter(self.stances.values()))._weights()
+        rng = np.random.default_rng(0)
+        samples = {e: x.samples(self._around(x.before), rng) for e, x in self.steps.items()}
+        tried: list[tuple[tuple[int, float], int, Family]] = []
+        for n, family in enumerate(families(samples, room, self.claim.metric, weights)):
+            rank = self._by_samples(samples, family, regions)
+            if rank is not None:
+                tried.append((rank, n, family))
+        tried.sort(key=lambda x: x[:2])
+        best: tuple[float, Family] | None = None
+        for _, _, family in tried[:TRIED]:
+            self._take(family)
+            size = self._size_of({e: x.pair() for e, x in self.steps.items()}, regions)
+            if best is None or size < best[0]:
+                best = size, family
+            if size < np.inf and (regions or len(tried) == 1 or size < 0.9):
+                break
+        self._take({s: x._plain() for s, x in self.stances.items()} if best is None else best[1])
+        if best is not None and best[0] == np.inf and not regions:
+            self._shrink()
+
+    def _around(self, x: StanceSearch) -> Domain:
+        spans = tuple((t.lower, t.upper) for t in x.targets)
+        return Domain("region", Fraction(0), spans[0], targets=spans)
+
+    def _take(self, family: Family) -> None:
+        for s, x in self.stances.items():
+            x.normed(family[s])
+
+    def _by_samples(self, samples: Mapping[Step, Samples], family: Family, regions: bool) -> tuple[int, float] | None:
+        """Whether sets are kept and, then, how small the bounds are, by samples; None where the norm is none."""
+        try:
+            self._take(family)
+        except Rejected:
+            return None
+        pairs = {}
+        for (s, t), x in samples.items():
+            v, left = floats(self.stances[t].norm.rows), floats(self.stances[s].norm.inverse)
+            a, m = v @ x.jacobians @ left, x.misses @ v.T
+            round_ = family[s].kind == "ellipsoid"
+            sizes = np.linalg.norm(a, 2, axis=(1, 2)) if round_ else np.abs(a).sum(axis=2).max(axis=1)
+            lengths = np.linalg.norm(m, axis=1) if round_ else np.abs(m).max(axis=1)
+            pairs[s, t] = float(sizes.max(initial=0.0)), float(lengths.max(initial=0.0))
+        size = self._size_of(pairs, regions)
+        if size < np.inf:
+            return 0, size
+        found = bounds(pairs, list(self.stances))
+        return (2, max(k for k, _ in pairs.values())) if found is None else (1, self._share(found))
+
+    def _share(self, bound: Mapping[str, float]) -> float:
+        """The largest share of its room that a bound takes."""
+        return max(bound[s] * max(x.shares()) for s, x in self.stances.items())
+
+    def _size_of(self, pairs: Pairs, regions: bool) -> float:
+        """The largest share of its room that a bound takes; inf where the balls are not kept (estimates)."""
+        found = bounds(pairs, list(self.stances))
+        if found is None:
+            return np.inf
+        r = {s: to_float(x.domain.radius) for s, x in self.stances.items()}
+        if not regions and not all(k * r[s] + e <= SPARE * r[t] for (s, t), (k, e) in pairs.items()):
+            return np.inf
+        return self._share(found)
+
+    def _shrink(self) -> None:
+        """Smaller balls that are kept, where the largest are not: found from small ones, then widened."""
+        largest = {s: x.domain.radius for s, x in self.stances.items()}
+        most = {s: to_float(r) for s, r in largest.items()}
+        kept = self._kept_share(most) or {}
+        for _ in range(WIDENED if kept else 0):
+            wider = radii(self._pairs(kept), most) or kept
+            middle = {s: (r + max(r, wider[s])) / 2 for s, r in kept.items()}
+            kept = radii(self._pairs(middle), middle) or kept
+        for s, x in self.stances.items():
+            r = min(_short(kept[s]) if kept else largest[s], largest[s])
+            x.domain, x.shrunk = x._within(x.norm, r), r < largest[s]
+
+    def _kept_share(self, most: Mapping[str, float]) -> dict[str, float] | None:
+        """Radii of balls that are kept, within a share of the largest."""
+        for share in SHARES:
+            wanted = {s: share * r for s, r in most.items()}
+            kept = radii(self._pairs(wanted), wanted)
+            if kept is not None:
+                return kept
+        return None
+
+    def _pairs(self, wanted: Mapping[str, float]) -> Pairs:
+        """Gain and residual of every step over balls of these radii, a little too large (estimates)."""
+        for s, x in self.stances.items():
+            x.domain = x._within(x.norm, Fraction(wanted[s]))
+        each = {e: x.pair() for e, x in self.steps.items()}
+        return {e: (k * (1 + 1e-6), y * (1 + 1e-6)) for e, (k, y) in each.items()}
+
+    def _compared(self, invariant: int, on: Mapping[str, int], moves: Mapping[str, list[int] | None]) -> None:
+        """Comparisons entry by entry: in the states themselves, and in the bases of the norms."""
+        n = len(next(iter(self.stances.values())).obligations.states)
+        one = tuple(tuple(Fraction(int(i == j)) for j in range(n)) for i in range(n))
+        plain: dict[str, Basis] = dict.fromkeys(self.stances, (one, one))
+        normed: dict[str, Basis] = {s: (x.norm.rows, x.norm.inverse) for s, x in self.stances.items()}
+        for bases in [plain] if plain == normed else [plain, normed]:
+            tables: dict[Step, tuple[int, int]] = {}
+            for (s, t), step in self.steps.items():
+                pair = step.tables(on[s], bases[s], bases[t])
+                if pair is not None:
+                    tables[s, t] = pair
+            if len(tables) == len(self.steps):
+                moving = [n for s in self.stances for n in moves[s] or []]
+                self.writer.compared(invariant, tables, moving, bases)
+
+
+def _short(x: float) -> Fraction:
+    """Rounded down, by less than what `_pairs` adds."""
+    scale = Fraction(10) ** (9 - floor(log10(x)))
+    return floor(Fraction(x) * scale) / scale

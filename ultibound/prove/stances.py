@@ -1,0 +1,155 @@
+"""One stance of several that follow one another, and the step from it to the next (proofs/graph.md)."""
+
+from __future__ import annotations
+
+import numpy as np
+
+from ..bounding.evaluate import to_float
+from ..certificate.enclosing import Encloser, Watch
+from ..certificate.graph import Basis, StanceWriter, StepWriter
+from ..certificate.lines import upward
+from ..checker.matrices import Metric, metric
+from ..checker.several import moved
+from ..claim import Claim
+from ..claim.graph import Graph
+from ..claim.model import Stance
+from ..claim.obligations import Domain, Obligation, Obligations
+from ..claim.provable import of_stance
+from ..contraction.graph import Samples
+from ..contraction.metrics import Proposal
+from ..contraction.norms import Norm
+from .one import COARSE, Known
+from .several import FEW, SeveralAttempt, floats
+
+
+class Shared(Encloser):
+    """Ranges of one stance; Ctrl-C stops the searches of all."""
+
+    def __init__(
+        self, claim: Claim, graph: Graph, writer: StanceWriter, gap: float, until: float, watch: Watch,
+        others: list[Encloser],
+    ) -> None:  # fmt: skip
+        super().__init__(claim, graph, writer, gap, until, watch)
+        self.others = others
+        others.append(self)
+
+    def interrupt(self) -> None:
+        super().interrupt()
+        for x in self.others:
+            x.interrupted, x.until = True, 0.0
+
+
+class StanceSearch(SeveralAttempt):
+    """One stance: its targets, its set and what is asked over it."""
+
+    writer: StanceWriter
+    leaves_region = False  # whether a point leaves the region of a stance that follows
+
+    def __init__(
+        self, claim: Claim, stance: Stance, whole: StanceWriter, gap: float, until: float, watch: Watch,
+        others: list[Encloser], known: Known,
+    ) -> None:  # fmt: skip
+        """`whole`: the proof of all stances; `others`: the ranges of all of them, so far."""
+        self.claim, self.gap, self.until, self.watch = of_stance(claim, stance.name), gap, until, watch
+        self.stance, self.variant, self.known = stance, 0, known
+        self.obligations, self.writer = Obligations(self.claim), StanceWriter(whole.proof, whole.raw, stance.name)
+        self.ranges = Shared(self.claim, self.obligations.graph, self.writer, gap, until, watch, others)
+        self._flow()
+        self.targets = [self._target(s) for s in self.obligations.states]
+
+    @property
+    def room(self) -> list[float]:
+        found = [to_float(x) for x in self.rooms()]
+        return [x if x > 0 else max(max(found), 0.0) or 1.0 for x in found]
+
+    def led_into(self, afters: list[StanceSearch], gap: float) -> list[int] | None:
+        """The lines that the region is mapped into the region of every stance that follows; None where it is not."""
+        found = []
+        for s in self.obligations.states:
+            image = self.ranges.enclose(self.obligations.image(s), None, points=True, gap=gap)
+            if image is None:
+                return None
+            inner = [x.writer.derivation.region(s)[1] for x in afters]
+            low, high = max(x[0] for x in inner), min(x[1] for x in inner)
+            self.leaves_region |= image.least < low or image.most > high
+            if not (low <= image.lower and image.upper <= high):
+                return None
+            found.append(image.line)
+        return found
+
+    def normed(self, p: Proposal) -> None:
+        """Takes a norm, and the largest ball of it."""
+        self.chosen, self.norm = p, metric(p.kind, p.rows, p.inverse, len(self.obligations.states))
+        self.domain = self._within(self.norm, self._largest(self.norm))
+
+    def about(self, ball: int, region: bool) -> None:
+        """The set: the region, or the ball as its line has it."""
+        found = self.writer.domain(ball)
+        if region:
+            self.domain = Domain("region", self.domain.radius, self.domain.target, targets=self.domain.targets)
+        elif found is not None:
+            self.domain = self._within(self.norm, found.radius, found.beyond)
+
+    def shares(self) -> list[float]:
+        """How far the ball of radius 1 reaches along each state, of its room."""
+        return [to_float(self.norm.support(i)) / max(x, 1e-300) for i, x in enumerate(self.room)]
+
+
+class StepSearch(SeveralAttempt):
+    """The step from a stance to one that follows: Jacobians and misses in the norms of both."""
+
+    writer: StepWriter
+
+    def __init__(self, before: StanceSearch, after: StanceSearch, until: float, others: list[Encloser]) -> None:
+        self.claim, self.gap, self.watch = before.claim, before.gap, before.watch
+        self.before, self.after, self.obligations = before, after, before.obligations
+        graph, writer = self.obligations.graph, before.writer
+        self.ranges = Shared(self.claim, graph, writer, self.gap, until, self.watch, others)
+        self.ranges.flows, self.leaves, self.needed = before.ranges.flows, {}, 0
+        self.targets = before.targets
+
+    def _miss(self, s: str, steps: int = 0) -> Obligation:
+        return self.obligations.miss(s, steps, self.after.obligations.stance)
+
+    def _form(self, proves: str, norm: Metric) -> Norm:
+        inverse = floats(norm.inverse) if proves == "slopes" else None
+        return Norm(floats(self.after.norm.rows), inverse, norm.kind == "ellipsoid")
+
+    def _shift(self, norm: Metric) -> float:
+        return self.after._shift(norm)
+
+    def samples(self, domain: Domain, rng: np.random.Generator) -> Samples:
+        jacobians, misses = (self.sampled(self.matrices(x, domain), rng) for x in ("slopes", "misses"))
+        return Samples(jacobians, misses[:, :, 0])
+
+    def pair(self) -> tuple[float, float]:
+        """Gain and residual over the ball of the stance (estimates); inf where they have no value."""
+        found, domain = [], self.before.domain
+        for proves in ("misses", "slopes"):
+            search = self.searched(proves, domain, self.before.norm, COARSE, FEW)
+            self.needed = max(self.needed, search.leaves)
+            found.append(search.upper)
+        return found[1], found[0] + self._shift(self.after.norm)
+
+    def proved(self, norm: int, on: int, moves: list[int]) -> int | None:
+        """The line of gain and residual of the step."""
+        self.writer = StepWriter(self.before.writer, self.after.writer, norm)
+        self.domain, self.norm = self.before.domain, self.before.norm
+        self.slopes, self.misses = self._norm("slopes", on), self._norm("misses", on)
+        if self.slopes is None or self.misses is None:
+            return None
+        w, d = self.writer, self.after.writer.derivation
+        far = moved(d, [w.proof.lines[n] for n in moves])
+        residual = w.proof.lines[self.misses[0]].concludes["norm"] + self.after.norm.length(far)
+        concludes = {"gain": upward(w.proof.lines[self.slopes[0]].concludes["norm"]), "residual": upward(residual)}
+        return w.append("slope", "slope", [self.slopes[0], self.misses[0], *moves], {}, concludes)
+
+    def tables(self, on: int, before: Basis, after: Basis) -> tuple[int, int] | None:
+        """The lines of entries of slopes and misses in a basis of each of the two stances."""
+        if self.slopes is None or self.misses is None:
+            return None
+        found = [
+            self.writer.table(proves, known[1], known[2], on, self.leaves[proves], before, after)
+            for proves, known in (("slopes", self.slopes), ("misses", self.misses))
+        ]
+        return found[0], found[1]
