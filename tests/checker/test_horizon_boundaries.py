@@ -669,7 +669,8 @@ def two_states() -> None:
         if max(uses) < number:
             reject(f"flat: line {number} uses {uses}", but(good, f"proof {number - 1} uses", uses), f"proof line {number}", reason)
     for number, kind in ((16, "slopes"), (17, "misses")):
-        early = but(good, f"proof {number - 1} proves", f"{kind}@1", f"proof {number - 1} concludes", {"1,1": "2", "1,2": "2", "2,1": "2", "2,2": "2"} if kind == "slopes" else {"1,1": "2", "2,1": "2"})
+        wide = {f"{sign}{key}": f"{sign}2" for key in (("1,1", "1,2", "2,1", "2,2") if kind == "slopes" else ("1,1", "2,1")) for sign in ("", "-")}
+        early = but(good, f"proof {number - 1} proves", f"{kind}@1", f"proof {number - 1} concludes", wide)
         reject(f"flat: a comparison of {kind} of fewer steps", early, "proof line 18", "componentwise rests on entries slopes, entries misses")
     rows = but(good, "proof 13", {"rule": "invariant-rows", "proves": "invariant", "uses": [5, 16, 17], "witness": {}, "concludes": {}})
     reject("flat: rows of entries yet to come", rows, "proof line 14", "uses: earlier line numbers only")

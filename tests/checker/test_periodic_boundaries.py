@@ -84,7 +84,7 @@ def rounds() -> None:
 def figures() -> None:
     """What an orbit says of bounds: their lower ends, and refutations."""
     wanted = [
-        ("bound(x) <= 7/20", "proved"), ("bound(x) < 7/20", "refuted"), (f"bound(x) < 7/20 + 1{STEP}", "proved"), (f"bound(y) <= 1/5 - 1{STEP}", "refuted"), ("bound(y) <= 1/5", "proved"), ("sharp_bound(x) <= 0.1", "undecided"), ("settles", "proved"),
+        ("bound(x) <= 7/20", "proved"), ("bound(x) < 7/20", "refuted"), (f"bound(x) < 7/20 + 1{STEP}", "proved"), (f"bound(y) <= 1/5 - 1{STEP}", "refuted"), ("bound(y) <= 1/5", "proved"), ("sharp_bound(x) <= 0.1", "refuted"), ("settles", "proved"),
     ]
     for top, name in (("", "orbit"), ("shrink = true\n", "orbit, shrink")):
         verdicts = [(that, "undecided" if top and v == "refuted" else v) for that, v in wanted]
