@@ -102,7 +102,9 @@ def case(seed: int) -> tuple[Case, int]:
         bend = rng.choice(KINDS[kind]).format(inside)
         shift = " + shift" if kind == "correction" else ""
         away = f" + {size:.3f}*({bend} - {0.9 if 'cos' in bend or 'exp' in bend else 0.1})" if size else ""
-        bodies[s] = f"{targets[s]} + {linear}{shift}{away} + {rng.uniform(-0.05, 0.05):.3f}*(d - 0.05) + 0.02*(T - 0.45)"
+        bodies[s] = (
+            f"{targets[s]} + {linear}{shift}{away} + {rng.uniform(-0.05, 0.05):.3f}*(d - 0.05) + 0.02*(T - 0.45)"
+        )
     law = f"-{rng.uniform(0.1, 0.3):.3f}*(x - ({targets['x']}))" if kind == "correction" else "0"
     spans = {s: (-round(rng.uniform(0.3, 1.0), 2), round(rng.uniform(0.3, 1.0), 2)) for s in states}
     rows, read = library(rng)
@@ -120,7 +122,9 @@ def case(seed: int) -> tuple[Case, int]:
     text += (f'[metric]\nkind = "{rng.choice(METRICS)}"\n' if n > 1 else "") + ASKED.format(last=states[-1])
     names = {**NAMES, "read": read}
     bare = {s: b.replace("shift", f"({law})").replace("reach", "read(x + 0.1*d, T)") for s, b in bodies.items()}
-    code = [eval(f"lambda {', '.join(states)}, d, T, h: {bare[s]}", names) for s in states]  # texts of this module's own
+    code = [
+        eval(f"lambda {', '.join(states)}, d, T, h: {bare[s]}", names) for s in states
+    ]  # texts of this module's own
     aims = [eval(f"lambda h: {targets[s]} + 0*h", {}) for s in states]
 
     def step(x: Any, v: Values) -> Any:
@@ -206,7 +210,6 @@ class Run:
         if self.kind == "none":
             return
         c, n, dims, N = self.c, TRAJECTORIES, len(self.c.states), self.horizon
-        k, e = upper(self.results["gain"]), upper(self.results["residual"])
         pair = self.results["routes"].get("slope") or self.results["routes"].get("split")
         k, e = (upper(pair["gain"]), upper(pair["residual"])) if pair else (None, None)
         x, alone = self.starts()
