@@ -22,7 +22,7 @@ def test_the_corpus_is_large() -> None:
     "case", CASES, ids=[f"{k}-{c.name[:40]}".encode("ascii", "replace").decode() for k, c in enumerate(CASES)]
 )
 def test_both_readers_agree(case: Case) -> None:
-    start = time.monotonic()
+    start = time.process_time()
     claim: Claim | str
     statement: Statement | str
     try:
@@ -36,7 +36,7 @@ def test_both_readers_agree(case: Case) -> None:
         statement = str(why)
     assert isinstance(claim, Claim) == case.accepted, claim
     assert isinstance(statement, Statement) == case.accepted, statement
-    assert time.monotonic() - start < 2
+    assert time.process_time() - start < 2
     if isinstance(claim, Claim) and isinstance(statement, Statement):
         for name in ("route", "correction", "shrink", "horizon", "metric", "gap", "cells", "seconds", "title", "notes"):
             assert getattr(claim, name) == getattr(statement, name), name

@@ -5,6 +5,7 @@ from __future__ import annotations
 import json
 from fractions import Fraction as Q
 from itertools import product
+from pathlib import Path
 from typing import Any
 
 import numpy as np
@@ -338,6 +339,33 @@ def test_a_continuous_stance_over_each_foot() -> None:
     upper = float(r["bound"]["upper"])
     assert bound <= upper <= bound * 1.002
     assert abs(float(r["gain"]["upper"]) - k) <= 1e-4
+
+
+def test_the_example_is_proved() -> None:
+    text = (Path(__file__).parents[1] / "ultibound" / "examples" / "sidestepping.toml").read_text()
+    assert set(verdicts(proved(text).results)) == {"proved"}
+
+
+def test_the_command_shows_every_stance() -> None:
+    from io import StringIO
+
+    from rich.console import Console
+
+    from ultibound.report.terminal import outcome
+
+    r = proved(
+        graph(
+            {"a": ("b", "[-1, 1]", "0", "x/2 + 0.01*w"), "b": ("a", "[-1, 1]", "0", "x/3")},
+            "settles",
+            '"settles"\nin = "a"',
+        )
+    ).results
+    console = Console(record=True, width=120, file=StringIO())
+    console.print(outcome("title", r, {"x": "m"}, [None, "a"]))
+    text = console.export_text()
+    assert all(
+        x in text for x in ("stance", "│ x     │ 0", "settles in a", "certified set: the region of every stance")
+    )
 
 
 def test_the_same_bytes_again() -> None:

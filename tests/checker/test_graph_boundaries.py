@@ -428,6 +428,39 @@ def two_states() -> None:
     reject("lengths of two kinds", but(good, f"proof {mixed} witness", other, "proof 11 concludes outer", "2"), f"proof line {next(n for n, x in enumerate(good['proof'], 1) if x['rule'] == 'matrix')}", "Euclidean lengths and largest magnitudes")
 
 
+def not_kept() -> None:
+    """Of the largest balls gain and residual are known even where they are not kept; of smaller ones nothing is."""
+    for small in (False, True):
+        entries = balls(small=small, escape=False).found(None, [("settles", "undecided")])
+        last = len(entries["proof"])
+        bare = without(entries, last, last - 1)
+        if small:
+            bare = but(bare, "results routes", {})
+            reject("smaller balls that are not kept", bare, "proof", "serves no later line")
+            reject("a gain over smaller balls that are not kept", but(bare, "results gain", {"lower": None, "upper": "1/2"}), "results", "results.gain.upper: nothing was derived")
+        else:
+            exact("the largest balls, not kept", bare, {"gain": (None, "1/2"), "residual": (None, "3/8"), "routes slope gain": (None, "1/2")})
+
+
+def of_another_set() -> None:
+    """Gain and residual over the balls, where the regions are the sets; of several stretches the largest serves."""
+    good = regions().found("region", [("settles", "undecided")])
+    bare = without(good, 27, 26, 25, 24, 23, 22, 21, 20, 19, 18)
+    accept("gain and residual over the regions", bare)
+    for e, lines, uses in (("left>right", (12, 13), [4, 6]), ("right>left", (15, 16), [9, 1])):
+        reject(f"gain and residual over a ball, {e}", but(bare, *(x for n in lines for x in (f"proof {n - 1} uses", uses))), "results", f"{e}: gain and residual refer to another set or norm")
+    d = regions()
+    d.stretch("left>right:slopes", {"x": "1", "p": "0"}, "1", [11, 6])
+    reject("a stretch that says less", d.found("region", [("settles", "proved")]), "proof", "line 28 serves no later line")
+    d = regions()
+    d.proof.append({**d.proof[22], "concludes": {"left:x": "1", "right:x": "1"}})
+    reject("a comparison that says less", d.found("region", [("settles", "proved")]), "proof", "line 28 serves no later line")
+    d = regions()
+    d.proof[23], more = {**d.proof[23], "concludes": {"lower": "1"}}, d.proof[23]
+    d.proof.append(more)
+    reject("a stretch that says less first", d.found("region", [("settles", "proved")]), "proof", "line 24 serves no later line")
+
+
 def moving() -> None:
     """Held c, which moves by up to 1/16 a step: the target c of the left by 1/16, that of the right, −2c, by 1/8."""
     d = Steps(claim("-2*c + (x - c)/2 + p", "c + (x + 2*c)/4 + q", ("[-1, 1]", "[-1, 1]"), ("settles",), ("c", "-2*c"),
@@ -517,12 +550,16 @@ def of_the_ground() -> None:
         for lower in ("0", "-1"):
             reject(f"a stance that may not last, {n} {lower}", but(good, f"proof {n - 1} concludes lower", lower), "results", "results.set.kind: 'region' is claimed, None was derived")
         accept(f"a stance that may be short, {n}", but(good, f"proof {n - 1} concludes lower", hair("0", 1)))
+        none = but(without(good, n), "results set", None, "results stances left set", None, "results stances right set", None, "results requirements 0 verdict", "undecided", "results routes", {})
+        reject(f"steps of a stance that may not last, {n}", none, "proof", "serves no later line")
         reject(f"a stance that may not last, {n}", without(good, n), "results", "results.set.kind: 'region' is claimed, None was derived")
 
 
 in_regions()
 what_is_kept()
 two_states()
+not_kept()
+of_another_set()
 moving()
 at_rest()
 of_the_ground()

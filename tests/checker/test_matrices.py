@@ -423,38 +423,43 @@ def leaves_that_do_not_fit(m: Any) -> None:
         refused(m, why, lambda of=of: m.norm_at_most(one, of, Q(10)))
         refused(m, why, lambda of=of: m.norm_over(one, of))
     assert m.norm_at_most(one, leaf(m, diagonal(0, 2**4000 - 1)), Q(2**4000 - 1))
-    refused(m, "as many columns as the inverse", lambda: m.entries(square, square, leaf(m, matrix([1], [1]))))
+    refused(
+        m,
+        "as many columns as the inverse",
+        lambda: m.entries(m.framed(square, square), leaf(m, matrix([1], [1])), True),
+    )
+
+
+def ends(m: Any, v: Any, left: Any, of: Any) -> tuple[Any, Any]:
+    """The entries' ends as fractions."""
+    frame = m.framed(v, left if left is not None else diagonal(*[1] * len(v[0])))
+    low, high = m.entries(frame, of, left is not None)
+    return tuple(tuple(tuple(Q(x, 2**m.ENTRY_BITS) for x in row) for row in each) for each in (low, high))
 
 
 @question
 def entries_at_equality(m: Any) -> None:
-    v = matrix([1, 1], [1, -2])
-    left = inverse(v)
-    a = leaf(m, diagonal(2, -1), [diagonal(0, 3), nothing(2, 2)], diagonal(Q(1, 2), 0))
-    # V A L = [[1, 1], [2, 0]], V G L = [[1, -1], [-2, 2]], |V| rest |L| = 1/2 [[2/3, 1/3], [2/3, 1/3]]
-    most = matrix([2 + Q(1, 3), 2 + Q(1, 6)], [4 + Q(1, 3), 2 + Q(1, 6)])
-    least = matrix([-Q(1, 3), -Q(1, 6)], [-Q(1, 3), -2 - Q(1, 6)])
-    assert m.entries(v, left, a) == (least, most)
-    assert m.entries(v, None, a) == (
-        matrix([2 - Q(1, 2), -4], [2 - Q(1, 2), -4]),
-        matrix([2 + Q(1, 2), 2], [2 + Q(1, 2), 8]),
-    )
-    assert m.entries(diagonal(1, 1), None, a) == (matrix([Q(3, 2), 0], [0, -4]), matrix([Q(5, 2), 0], [0, 2]))
-    one = leaf(m, matrix([1], [-1]), [matrix([-1], [Q(1, 3)])], matrix([0], [Q(1, 4)]))
-    spread = matrix([Q(2, 3) + Q(1, 4)], [Q(5, 3) + Q(1, 2)])
-    assert m.entries(v, None, one) == (
-        matrix([-spread[0][0]], [3 - spread[1][0]]),
-        matrix([spread[0][0]], [3 + spread[1][0]]),
-    )
+    """Exact where they are whole multiples of a unit, else rounded outward to the next."""
+    v, left = matrix([1, 1], [1, -1]), matrix([Q(1, 2), Q(1, 2)], [Q(1, 2), -Q(1, 2)])
+    a = leaf(m, diagonal(2, -1), [diagonal(0, 4), nothing(2, 2)], diagonal(Q(1, 2), 0))
+    # V A L = 1/2 [[1, 3], [3, 1]], V G L = 2 [[1, -1], [-1, 1]], |V| rest |L| = 1/4
+    most = matrix([Q(1, 2) + Q(9, 4), Q(3, 2) + Q(9, 4)], [Q(3, 2) + Q(9, 4), Q(1, 2) + Q(9, 4)])
+    least = matrix([Q(1, 2) - Q(9, 4), Q(3, 2) - Q(9, 4)], [Q(3, 2) - Q(9, 4), Q(1, 2) - Q(9, 4)])
+    assert ends(m, v, left, a) == (least, most)
+    assert ends(m, v, None, a) == (matrix([Q(3, 2), -5], [Q(3, 2), -3]), matrix([Q(5, 2), 3], [Q(5, 2), 5]))
+    assert ends(m, diagonal(1, 1), None, a) == (matrix([Q(3, 2), 0], [0, -5]), matrix([Q(5, 2), 0], [0, 3]))
+    one = leaf(m, matrix([1], [-1]), [matrix([-1], [Q(1, 4)])], matrix([0], [Q(1, 4)]))
+    assert ends(m, v, None, one) == (matrix([-1], [Q(1, 2)]), matrix([1], [Q(7, 2)]))
     ten = [diagonal(1, 2)] * 10
-    assert m.entries(diagonal(1, 1), diagonal(1, 1), leaf(m, diagonal(-1, 0), ten)) == (
+    assert ends(m, diagonal(1, 1), diagonal(1, 1), leaf(m, diagonal(-1, 0), ten)) == (
         diagonal(-11, -20),
         diagonal(9, 20),
     )
-    # Z beside it, over another denominator
-    z = matrix([Q(1, 7), -2], [0, Q(3, 5)])
-    for ends, plain in zip(m.entries(v, left, a, z), (least, most), strict=True):
-        assert ends == tuple(tuple(map(sum, zip(*rows, strict=True))) for rows in zip(plain, z, strict=True))
+    third, tiny = leaf(m, diagonal(Q(1, 3), -Q(1, 3)), [], diagonal(0, 0)), Q(1, 2**m.ENTRY_BITS)
+    low, high = ends(m, diagonal(1, 1), diagonal(1, 1), third)
+    for i, x in enumerate((Q(1, 3), -Q(1, 3))):
+        assert low[i][i] < x < high[i][i] == low[i][i] + tiny
+    assert low[0][1] == high[0][1] == 0 and tiny < Q(1, 10**40)
 
 
 @question
@@ -560,7 +565,7 @@ def against_singular_values(m: Any) -> None:
             assert m.norm_at_most(norm(m, kind, v), of, near * (1 + Q(1, 10**8))) and not m.norm_at_most(
                 norm(m, kind, v), of, near * (1 - Q(1, 10**8))
             )
-        low, high = map(numbers, m.entries(v, left if columns > 1 else None, of))
+        low, high = map(numbers, ends(m, v, left if columns > 1 else None, of))
         assert (np.max(samples, axis=0) <= high + 1e-12).all() and (low - 1e-12 <= np.min(samples, axis=0)).all()
         assert np.allclose(high, np.max(at_corners, axis=0) + wide, atol=1e-12)
         assert np.allclose(low, np.min(at_corners, axis=0) - wide, atol=1e-12)

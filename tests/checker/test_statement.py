@@ -145,10 +145,10 @@ def lines(form: str, count: int) -> str:
 def refusal(
     text: str, settings: dict[str, str] | None = None, files: dict[str, str] | None = None, within: float = 1
 ) -> str:
-    start = time.monotonic()
+    start = time.process_time()
     with pytest.raises(Refused) as why:
         read(text, settings, files)
-    assert time.monotonic() - start < within
+    assert time.process_time() - start < within
     assert len(str(why.value)) <= 403 and str(why.value).isprintable()
     return str(why.value)
 
@@ -307,10 +307,10 @@ def test_nodes_are_flat_and_in_order() -> None:
     "1/0 + v", "sqrt(-1)*v", "0**-1", "(v", "v)", "9**9**9", "((9**64)**64)**64", "9" * 4001, "(" * 65 + "v" + ")" * 65, "-" * 65 + "v", "(" * 9999, "-" * 9999, "v" + "**2" * 3000 + "**v", "v" + "+v" * 5000, "v" * 41,
 ])  # fmt: skip
 def test_expressions_outside_the_grammar(text: str) -> None:
-    start = time.monotonic()
+    start = time.process_time()
     with pytest.raises(Refused):
         parse(text, {})
-    assert time.monotonic() - start < 1
+    assert time.process_time() - start < 1
 
 
 @pytest.mark.parametrize(
@@ -444,18 +444,18 @@ LONG = {
 
 @pytest.mark.parametrize("name", LONG)
 def test_long_claims_are_read_in_time(name: str) -> None:
-    start = time.monotonic()
+    start = time.process_time()
     read(LONG[name])
-    assert time.monotonic() - start < 5  # about 0.5 s; a quadratic reader takes minutes
+    assert time.process_time() - start < 5  # about 0.5 s; a quadratic reader takes minutes
 
 
 def test_many_columns_are_read_in_time() -> None:
     many = range(20_000)
     rows = [["pace", *(f"c{k}" for k in many)], ["-1", *("0" for _ in many)], ["1", *("2" for _ in many)]]
-    start = time.monotonic()
+    start = time.process_time()
     lift = read(LIBRARY, files={**FILES, "lift.csv": "\n".join(",".join(r) for r in rows)}).libraries[1]
     assert len(lift.columns) == 20_000 and lift.columns["c7"] == (Q(0), Q(2))
-    assert time.monotonic() - start < 5
+    assert time.process_time() - start < 5
 
 
 def test_no_recursion_error_near_the_limit_of_the_stack() -> None:

@@ -14,20 +14,20 @@ from ultibound.claim import ClaimError, parse_claim, read_claim
 
 
 def refused(text: str, data: dict[str, str] | None = None, limit: float = 1.0) -> list[str]:
-    start = time.monotonic()
+    start = time.process_time()
     with pytest.raises(ClaimError) as caught:
         parse_claim(text, {}, data or {}, "walker.toml")
-    assert time.monotonic() - start < limit
+    assert time.process_time() - start < limit
     lines = str(caught.value).split("\n")
     assert all(line.startswith("walker.toml: ") and len(line) < 1100 for line in lines)
     return lines
 
 
 def refused_file(path: Path, limit: float = 2.0) -> str:
-    start = time.monotonic()
+    start = time.process_time()
     with pytest.raises(ClaimError) as caught:
         read_claim(path)
-    assert time.monotonic() - start < limit
+    assert time.process_time() - start < limit
     return str(caught.value)
 
 
@@ -184,7 +184,7 @@ def test_definitions_that_would_explode_stay_small() -> None:
     from ultibound.prove import prove
 
     chain = 'd0 = "v"\n' + "\n".join(f'd{k} = "(d{k - 1} + d{k - 1})/2"' for k in range(1, 60))
-    start = time.monotonic()
+    start = time.process_time()
     certificate = prove(
         parse_claim(
             swap("v/2 + foot", "0.5*d59 + 0.1").replace('w = "sqrt(g/0.62)"', 'w = "sqrt(g/0.62)"\n' + chain),
@@ -193,7 +193,7 @@ def test_definitions_that_would_explode_stay_small() -> None:
             "c",
         )
     )
-    assert certificate.results["gain"]["upper"] == "0.5" and time.monotonic() - start < 20
+    assert certificate.results["gain"]["upper"] == "0.5" and time.process_time() - start < 20
 
 
 def test_data_files_stay_beside_the_claim(tmp_path: Path) -> None:
@@ -211,9 +211,9 @@ def test_data_files_stay_beside_the_claim(tmp_path: Path) -> None:
 
 def test_a_constant_too_small_to_be_told_from_zero_is_enclosed_at_once() -> None:
     """As the checker does: the grid of inexact values is absolute, and what divides by such a value is refused."""
-    start = time.monotonic()
+    start = time.process_time()
     low, high = parse_claim(swap("g = 9.81", 'g = "exp(-10**9)"'), {}, {}, "c").values["g"]
-    assert low == 0 < high < Fraction(1, 2**150) and time.monotonic() - start < 1
+    assert low == 0 < high < Fraction(1, 2**150) and time.process_time() - start < 1
     refused(swap("g = 9.81", 'g = "1/exp(-10**9)"'))
     refused(swap("g = 9.81", 'g = "exp(10**9)"'))
 

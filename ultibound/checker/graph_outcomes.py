@@ -113,7 +113,6 @@ class GraphResults(Results):
         kept = None if invariant is None else invariant.domains
         self.each = {name: StanceResults(proof, self.graph, name, kept) for name in self.graph.stances}
         self.settled = invariant is not None and all(x.lasts for x in self.each.values())
-        self.unsupported = max(x.unsupported for x in self.each.values())
         self.kind, self.whole = self.set_of(invariant if self.settled else None)
         # smaller balls that are not kept, or a stance that is not shown to last, are no sets to speak of
         small = any(x.ball.rule == "smaller-ball" or not x.lasting for x in self.each.values())

@@ -9,6 +9,7 @@ from __future__ import annotations
 from collections.abc import Iterator, Sequence
 from dataclasses import dataclass
 from fractions import Fraction
+from functools import cached_property
 from math import isqrt, lcm
 from operator import mul
 
@@ -23,6 +24,7 @@ MOST_ROWS = 64
 MOST_SLOPES = 8  # whose signs are told apart; further ones count as rest
 LONGEST = 4000  # bits of a matrix's whole numbers, and of the denominator they share
 ROOT_BITS = 72  # of a rounded square root
+ENTRY_BITS = 160  # of an entry, rounded outward
 
 
 @dataclass(frozen=True)
@@ -35,6 +37,10 @@ class Metric:
     kind: str
     rows: Matrix  # V, m x n
     inverse: Matrix  # L, n x m
+
+    @cached_property
+    def frame(self) -> Frame:
+        return framed(self.rows, self.inverse)
 
     def least(self, e: Sequence[Fraction]) -> Fraction:
         """Lower bound of ‖e‖ at a point: exact, or a root rounded down."""
@@ -105,6 +111,30 @@ class Leaf:
     slopes: tuple[Matrix, ...]
     rest: Matrix
 
+    @cached_property
+    def stack(self) -> tuple[Whole, int]:
+        """Centre, rest and slopes, one below the other. Raises Rejected."""
+        n, c = len(self.centre), len(self.centre[0]) if self.centre else 0
+        parts = self.centre, self.rest, *self.slopes
+        if any(len(part) != n or any(len(row) != c for row in part) for part in parts):
+            raise Rejected("matrix: centre, slopes and rest have one row for each state, and equally many columns")
+        if any(x < 0 for row in self.rest for x in row):
+            raise Rejected("matrix: the rest is a magnitude, and not negative")
+        return whole([row for part in parts for row in part])
+
+
+@dataclass(frozen=True)
+class Frame:
+    """V and L, each in whole numbers over its denominator."""
+
+    rows: tuple[Whole, int]
+    inverse: tuple[Whole, int]
+
+
+def framed(rows: Matrix, inverse: Matrix) -> Frame:
+    """Raises Rejected where the numbers are too long."""
+    return Frame(whole(rows), whole(inverse))
+
 
 @dataclass(frozen=True)
 class Image:
@@ -161,29 +191,18 @@ def norm_over(
     return reached + spread
 
 
-def entries(rows: Matrix, inverse: Matrix | None, leaf: Leaf, beside: Matrix = ()) -> tuple[Matrix, Matrix]:
-    """Largest lower and least upper bounds of (V A L + Z)_ij, or of (V A)_ij without an inverse: proofs/matrix.md (6).
+def entries(frame: Frame, leaf: Leaf, square: bool) -> tuple[Whole, Whole]:
+    """Lower and upper bounds of (V A L)_ij, or of (V A)_ij, in units of 2^-ENTRY_BITS: proofs/matrix.md (6).
 
-    Z is `beside`, or 0. Raises Rejected.
+    The closest ones, rounded outward. Raises Rejected.
     """
-    found = image(rows, inverse, leaf)
-    centre, half, unit = found.centre, found.rest, found.unit
+    found = image(frame, leaf, square)
+    half, unit = found.rest, found.unit
     for part in found.slopes:
         half = added(half, part)
-    if beside:
-        z, one = whole(beside)
-        centre = [
-            [one * x + unit * y for x, y in zip(row, other, strict=True)] for row, other in zip(centre, z, strict=True)
-        ]
-        half, unit = [[one * x for x in row] for row in half], one * unit
-    low, high = (
-        tuple(
-            tuple(Fraction(x + sign * y, unit) for x, y in zip(row, other, strict=True))
-            for row, other in zip(centre, half, strict=True)
-        )
-        for sign in (-1, 1)
-    )
-    return low, high
+    pairs = [list(zip(*rows, strict=True)) for rows in zip(found.centre, half, strict=True)]
+    low = [[(x - y << ENTRY_BITS) // unit for x, y in row] for row in pairs]
+    return low, [[-((-x - y << ENTRY_BITS) // unit) for x, y in row] for row in pairs]
 
 
 def vanishes(beside: Matrix, rows: Matrix) -> bool:
@@ -239,27 +258,25 @@ def seen(metric: Metric, leaf: Leaf) -> Image:
     columns = len(leaf.centre[0]) if leaf.centre else 0
     if columns not in (1, len(metric.inverse)):
         raise Rejected("matrix: a vector or a square matrix is bounded")
-    return image(metric.rows, metric.inverse if columns == len(metric.inverse) else None, leaf)
+    return image(metric.frame, leaf, columns > 1)
 
 
-def image(rows: Matrix, inverse: Matrix | None, leaf: Leaf) -> Image:
-    """V A L over one denominator: proofs/matrix.md (2), (6). Slopes that are 0 go; of too many, the least are rest."""
-    n, c = len(rows[0]), len(leaf.centre[0]) if leaf.centre else 0
-    parts = leaf.centre, leaf.rest, *leaf.slopes
-    if any(len(part) != n or any(len(row) != c for row in part) for part in parts):
+def image(frame: Frame, leaf: Leaf, square: bool) -> Image:
+    """V A L, or V A, over one denominator: proofs/matrix.md (2), (6).
+
+    Slopes that are 0 go; of too many, the least are rest.
+    """
+    (v, unit), (left, below), (stack, factor) = frame.rows, frame.inverse, leaf.stack
+    n, c = len(v[0]), len(leaf.centre[0]) if leaf.centre else 0
+    if len(leaf.centre) != n:
         raise Rejected("matrix: centre, slopes and rest have one row for each state, and equally many columns")
-    if any(x < 0 for row in leaf.rest for x in row):
-        raise Rejected("matrix: the rest is a magnitude, and not negative")
-    if inverse is not None and c != len(inverse):
+    if square and c != len(left):
         raise Rejected("matrix: as many columns as the inverse has rows")
-    v, unit = whole(rows)
-    stack, factor = whole([row for part in parts for row in part])
     unit *= factor
     centre, rest, *slopes = (times(v, stack[k : k + n]) for k in range(0, len(stack), n))
     rest = times(magnitudes(v), stack[n : 2 * n])
-    if inverse is not None:
-        left, factor = whole(inverse)
-        unit *= factor
+    if square:
+        unit *= below
         centre, rest = times(centre, left), times(rest, magnitudes(left))
         slopes = [times(g, left) for g in slopes]
     slopes = sorted((g for g in slopes if effect(g)), key=effect, reverse=True)

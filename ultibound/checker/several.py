@@ -12,7 +12,20 @@ from .derive import Derivation, Domain
 from .flows import Flows
 from .grammar import constant
 from .jacobians import Table, middle_and_half
-from .matrices import Leaf, Matrix, Metric, comparison, dot, entries, metric, norm_at_most, vanishes
+from .matrices import (
+    ENTRY_BITS,
+    Leaf,
+    Matrix,
+    Metric,
+    Whole,
+    comparison,
+    dot,
+    entries,
+    framed,
+    metric,
+    norm_at_most,
+    vanishes,
+)
 from .numerals import Rejected, quantity
 from .periodic import periodic
 from .products import product
@@ -217,21 +230,23 @@ def apart(basis: tuple[Matrix, Matrix], proves: str, beside: Any) -> Matrix:
 def hull(
     leaves: Iterable[Leaf], basis: tuple[Matrix, Matrix], proves: str, beside: Matrix = ()
 ) -> tuple[Matrix, Matrix, int]:
-    """The least and the largest entries over all leaves in a basis, and how many leaves there are."""
-    rows, inverse = basis
-    found: tuple[Matrix, Matrix] | None = None
-    count = 0
+    """The least and the largest entries over all leaves in a basis, what stands beside them added; how many leaves."""
+    frame, found, count, nothing = framed(*basis), list[Whole](), 0, Fraction(0)
     for leaf in leaves:
         count += 1
-        here = entries(rows, inverse if proves.startswith("slopes") else None, leaf, beside)
-        if found is not None:
-            low, high = (
-                tuple(tuple(map(pick, a, b)) for a, b in zip(x, y, strict=True))
-                for pick, x, y in zip((min, max), found, here, strict=True)
-            )
-            here = low, high
-        found = here
-    return *(found or ((), ())), count
+        here = entries(frame, leaf, proves.startswith("slopes"))
+        found = [
+            [list(map(pick, a, b)) for a, b in zip(x, y, strict=True)]
+            for pick, x, y in zip((min, max), found or here, here, strict=True)
+        ]
+    low, high = (
+        tuple(
+            tuple(Fraction(x, 2**ENTRY_BITS) + z for x, z in zip(row, other, strict=True))
+            for row, other in zip(m, beside or [[nothing] * len(row) for row in m], strict=True)
+        )
+        for m in found or ([], [])
+    )
+    return low, high, count
 
 
 def keyed(low: Matrix, high: Matrix) -> dict[str, Fraction]:

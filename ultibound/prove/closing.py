@@ -16,7 +16,7 @@ import numpy as np
 from ..bounding.evaluate import to_float
 from ..certificate.enclosing import BITS
 from ..checker.absorbed import bound
-from ..checker.matrices import Matrix, metric
+from ..checker.matrices import Leaf, Matrix, metric
 from ..checker.reals import Undefined
 from ..checker.rules import Line, Rejected
 from ..claim.obligations import Domain
@@ -29,7 +29,7 @@ ROUNDS = 4
 WIDER = Fraction(1, 1000)  # share by which a box is wider than the bounds
 LEAST = 1e-6  # of the room of a state: half the width of the narrowest box
 NOTABLE = 0.02  # share by which a round has to lower some bound
-LEAVES = 300
+LEAVES, GAP = 300, 0.01
 Table = tuple[int, tuple[str, ...], int]  # line, trees, bits
 
 
@@ -42,29 +42,31 @@ def chain_over(a: SeveralAttempt, domain: Domain, size: list[float]) -> Chain | 
 
 
 def closed_in(
-    a: SeveralAttempt, invariant: int, misses: Table, moves: list[int], bases: list[tuple[Matrix, Matrix]]
-) -> None:
+    a: SeveralAttempt, invariant: int, slopes: Table, misses: Table, moves: list[int],
+    bases: list[tuple[Matrix, Matrix]],
+) -> None:  # fmt: skip
     """Boxes that trajectories end up in, one inside the other, and the bounds by comparison over each."""
-    w, states = a.writer, a.obligations.states
-    rooms = a.rooms()
-    for _ in range(ROUNDS):
-        if a.ranges.interrupted or time.monotonic() + a.ranges.spent > a.ranges.until:
-            return
+    w, states, rooms = a.writer, a.obligations.states, a.rooms()
+    if a.claim.horizon > 1:
+        return
+    for first in range(ROUNDS):
         known = least(a)
-        if len(known) < len(states):
+        if len(known) < len(states) or a.ranges.interrupted or time.monotonic() + a.ranges.spent > a.ranges.until:
             return
         wide = [
             Fraction(f"{to_float(max(x * (1 + WIDER), room * Fraction(LEAST))):.9g}")
             for (x, _), room in zip(known.values(), rooms, strict=True)
         ]
         concludes = {s: str(x) for s, x in zip(states, wide, strict=True)}
+        began = time.monotonic()
         try:
             on = w.append("absorbed", "absorbed", sorted({n for _, n in known.values()}), {}, concludes)
-        except Rejected:  # the box reaches beyond the region
-            return
-        began = time.monotonic()
-        with suppress(Undefined, Rejected):
-            over_box(a, on, invariant, wide, misses, moves, bases)
+            with suppress(Undefined, Rejected):
+                over_box(a, on, invariant, wide, misses, moves, bases)
+        except Rejected:  # the box reaches beyond the region: what is left is the set itself
+            if first == 0:
+                along = chain_over(a, a.domain, [to_float(x) for x in rooms])
+                compare(a, invariant, invariant, (slopes, a.leaves["slopes"]), misses, moves, [], along)
         a.ranges.spent += time.monotonic() - began
         if all(after[0] > known[s][0] * Fraction(1 - NOTABLE) for s, after in least(a).items()):
             return
@@ -82,17 +84,26 @@ def over_box(
         tuple(tuple(x if i == j else Fraction(0) for j in range(n)) for i, x in enumerate(each))
         for each in ([1 / x for x in wide], wide)
     )
-    found = a.searched("slopes", domain, metric("box", rows, inverse, n), a.gap, LEAVES)
+    found = a.searched("slopes", domain, metric("box", rows, inverse, n), max(a.gap, GAP), LEAVES)
     bits = 0 if w.exact("slopes", on) else BITS
     leaves = w.leaves("slopes", found.trees, bits, on)
     along = chain_over(a, domain, [to_float(x) for x in wide])
+    compare(a, on, invariant, ((0, found.trees, bits), leaves), misses, moves, bases, along)
+
+
+def compare(
+    a: SeveralAttempt, on: int, invariant: int, slopes: tuple[Table, list[Leaf]], misses: Table, moves: list[int],
+    bases: list[tuple[Matrix, Matrix]], along: Chain | None,
+) -> None:  # fmt: skip
+    """Comparisons over a set in each of the bases, and along the map."""
+    w, ((_, trees, bits), leaves) = a.writer, slopes
     each: list[tuple[tuple[Matrix, Matrix], Matrix]] = [(basis, ()) for basis in bases]
     if along is not None:
         each.append(((along.rows, along.inverse), along.beside))
     for basis, beside in each:
-        slopes = w.entries("slopes", found.trees, bits, on, leaves, basis, beside)
+        found = w.entries("slopes", trees, bits, on, leaves, basis, beside)
         missed = w.entries("misses", misses[1], misses[2], invariant, a.leaves["misses"], basis)
-        w.componentwise(on, slopes, missed, moves)
+        w.componentwise(on, found, missed, moves)
 
 
 def least(a: SeveralAttempt) -> dict[str, tuple[Fraction, int]]:

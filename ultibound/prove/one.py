@@ -357,7 +357,7 @@ class Attempt:
             self.pairs[route] = self.writer.theorem(route, route, uses, concludes)
 
     def _curve(self, domain: Domain, on: int, moves: list[Proved] | None, lost: bool) -> None:
-        """Shells of the error curve, the line above them and the sharp bound: proofs/curve.md.."""
+        """Shells of the error curve, the line above them and the sharp bound: proofs/curve.md."""
         o, w, claim = self.obligations, self.writer, self.claim
         cells = prod(len(v.cells) for v in o.slope(domain).variables)
         if moves is None or (cells > MOST_ROUGH and not self.sharp):  # over so many even a rough curve would cost more

@@ -30,7 +30,7 @@ from ..contraction.norms import Matrices, Norm, Stretched, stretched
 from ..contraction.rounds import MOST_HELD, Map, courses
 from ..contraction.samples import combinations, drawn
 from ..contraction.words import Word, fastest
-from .closing import chain_over, closed_in
+from .closing import closed_in
 from .one import COARSE, DECIDED, Attempt
 
 if TYPE_CHECKING:
@@ -93,7 +93,7 @@ class SeveralAttempt(Attempt):
             for table in tables:
                 w.componentwise(invariant, *table, moves)
             if slopes is not None and misses is not None:
-                closed_in(self, invariant, misses, moves, list(self._bases()))
+                closed_in(self, invariant, slopes, misses, moves, list(self._bases()))
         for k, r in enumerate(self.claim.requirements, 1):
             if r.kind in RANGED and not self.variant:
                 self._range(k, through, way, self.domain, on)
@@ -415,14 +415,10 @@ class SeveralAttempt(Attempt):
         found: list[tuple[int, int]] = []
         if slopes is None or misses is None:
             return found
-        along = chain_over(self, self.domain, [to_float(x) for x in self.rooms()])
-        each: list[tuple[tuple[Matrix, Matrix], Matrix]] = [(basis, ()) for basis in self._bases()]
-        if along is not None:
-            each.append(((along.rows, along.inverse), along.beside))
-        for basis, beside in each:
+        for basis in self._bases():
             pair = []
-            for proves, (_, trees, bits), z in (("slopes", slopes, beside), ("misses", misses, ())):
-                pair.append(self.writer.entries(proves, trees, bits, on, self.leaves[proves], basis, z))
+            for proves, (_, trees, bits) in (("slopes", slopes), ("misses", misses)):
+                pair.append(self.writer.entries(proves, trees, bits, on, self.leaves[proves], basis))
             found.append((pair[0], pair[1]))
         return found
 
