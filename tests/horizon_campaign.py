@@ -210,7 +210,6 @@ class Run:
         if self.kind == "none":
             return
         c, n, dims, N = self.c, TRAJECTORIES, len(self.c.states), self.horizon
-        k, e = upper(self.results["gain"]), upper(self.results["residual"])
         pair = self.results["routes"].get("slope") or self.results["routes"].get("split")
         k, e = (upper(pair["gain"]), upper(pair["residual"])) if pair else (None, None)
         x, alone = self.starts()

@@ -166,6 +166,56 @@ gap = 0.1
 """
 
 
+HORIZON = """
+format = 1
+horizon = 2
+shrink = true
+[state]
+x = [-1, 1]
+y = [-1, 1]
+[uncertain]
+p = [-0.03, 0.03]
+h = { range = [-0.1, 0.1], held = true, change = 0.01 }
+[next]
+x = "h + 2*y + p"
+y = "(x - h)/8 + p/2 + 0.01*(x - h)**2"
+[target]
+x = "h"
+y = 0
+[metric]
+kind = "box"
+[[require]]
+that = "settles"
+[[require]]
+that = "bound(x) <= 0.3"
+[[require]]
+that = "steps(x, 0.1, 0.3) <= 4"
+[[require]]
+that = "always(next(x) <= 0.99)"
+[effort]
+gap = 0.1
+"""
+
+
+KINKED = """
+format = 1
+horizon = 2
+shrink = true
+[state]
+v = [-1.5, 1.5]
+[uncertain]
+p = ["-1/16", "1/16"]
+[next]
+v = "v/4 + 2*max(v - 1/2, 0) + p"
+[target]
+v = 0
+[[require]]
+that = "settles"
+[[require]]
+that = "bound(v) <= 0.2"
+"""
+
+
 def stances() -> str:
     """A stance over two cells of a library, with a gust, a push and a limit throughout."""
     return stance(
@@ -189,8 +239,9 @@ def sample(name: str) -> dict[str, Any]:
         return proved(courses()).entries
     if name == "stance":
         return proved(stances(), data={"gaits.csv": GAITS}).entries
-    if name in ("split", "over", "growing"):
-        return proved({"split": SPLIT, "over": OVER, "growing": GROWING}[name]).entries
+    texts = {"split": SPLIT, "over": OVER, "growing": GROWING, "horizon": HORIZON, "kinked": KINKED}
+    if name in texts:
+        return proved(texts[name]).entries
     if name == "several":
         text = (EXAMPLES / "recentring.toml").read_text().replace("[0.36, 0.42]", "[0.38, 0.40]")
         return proved(text + "[effort]\ngap = 0.1\n").entries
@@ -283,6 +334,7 @@ def lines_checked_once() -> Iterator[None]:
         "sidestepping",
         "mirrored",
         "growing",
+        "horizon",
     ],
 )
 def entries(request: pytest.FixtureRequest) -> dict[str, Any]:
@@ -530,6 +582,42 @@ def test_lines_about_other_ranges_are_not_mixed() -> None:
                 rejected(spoiled(entries, mix), "lines about other ranges")
 
 
+def test_a_horizon_that_leaves_the_region_between_steps_is_rejected() -> None:
+    """Each line but one holds: two steps keep the ball, one leads out of it, and then out of the region."""
+    entries = sample("kinked")
+    assert entries["results"]["set"]["kind"] == "smaller ball"
+    names = [line["proves"] for line in entries["proof"]]
+    course, first = names.index("course"), names.index("slope@1")
+    ends, radius = entries["proof"][first]["concludes"], Fraction(entries["results"]["radius"]["lower"])
+    far = Fraction(ends["gain"]) * radius + Fraction(ends["residual"])
+    assert radius < far < Fraction(3, 2)
+
+    def narrow(e: dict[str, Any], low: Fraction = far, high: Fraction = far) -> None:
+        e["claim"]["text"] = e["claim"]["text"].replace("[-1.5, 1.5]", f'["-({low})", "{high}"]')
+
+    leaves = f"proof line {course + 1}: a step on the way is not shown to stay in the region of v"
+    for low, high in ((far - Fraction(1, 10**30), far), (far, far - Fraction(1, 10**30))):
+        rejected(spoiled(entries, lambda e, low=low, high=high: narrow(e, low, high)), leaves)
+    verdict = check(spoiled(entries, narrow))  # at the edge itself: the lines after it are about the claim's region
+    assert verdict.place != f"proof line {course + 1}"
+
+    def more(e: dict[str, Any]) -> None:
+        e["proof"][first]["concludes"]["gain"] = str(Fraction(ends["gain"]) * 2)
+
+    rejected(spoiled(entries, more), leaves)
+
+    def without(e: dict[str, Any]) -> None:
+        del e["proof"][course]
+        for line in e["proof"]:
+            line["uses"] = [n - (n > course + 1) for n in line["uses"] if n != course + 1]
+
+    rejected(spoiled(entries, without), "results.set.kind: 'smaller ball' is claimed, None was derived")
+    for other in ("slope@2", "slope@0", "slope"):
+        rejected(
+            spoiled(entries, lambda e, other=other: e["proof"][first].update(proves=other)), f"proof line {first + 1}"
+        )
+
+
 def test_a_cut_tree_is_rejected(entries: dict[str, Any]) -> None:
     for number, line in enumerate(entries["proof"]):
         if line["rule"] != "range":
@@ -618,7 +706,7 @@ def test_another_claim_is_rejected(entries: dict[str, Any]) -> None:
         ("kappa = 0.1 ", "kappa = 0.02 "), ("kappa = 0.09", "kappa = 0.01"), ("kappa = 0.3 ", "kappa = 0.05 "),
         ("T = { range = [0.36, 0.40]", "T = { range = [0.30, 0.40]"), ("[0.37, 0.38]", "[0.32, 0.46]"),
         ("d = [-0.05, 0.05]", "d = [-0.09, 0.05]"), ("values = [0.1, 0.2]", "values = [0.1, 0.2, 2]"),
-        ("slip = [-0.003, 0.003]", "slip = [-0.03, 0.003]"), ("change = 0.02", "change = 0.05"), ("change = 0.01", "change = 0.05"), ("change = 0.005", "change = 0.05"), ("limit = 0.035", "limit = 0.01"), ("kappa = 0.6", "kappa = 0.2"), ("kappa = [0.4, 0.6]", "kappa = [0.1, 0.6]"), ("d = [-0.2, 0.2]", "d = [-0.4, 0.2]"), ("kappa = 0.3\n", "kappa = 0.1\n"), ('correction = ["shift"]', ""), ("g = 9.81", "g = 9.5"), ("T = [0.40, 0.41]", "T = [0.39, 0.41]"), ("[-0.05, 0.05], within", "[-0.06, 0.05], within"), ("[-0.1, 0.1], within", "[-0.11, 0.1], within"), ("loss = [0.024, 0.026]", "loss = [0.02, 0.026]"), ("x <= 0.5", "x <= 0.05"), ("range = [-0.2, 1.0]", "range = [-0.1, 0.9]"),
+        ("slip = [-0.003, 0.003]", "slip = [-0.03, 0.003]"), ("change = 0.02", "change = 0.05"), ("change = 0.01", "change = 0.05"), ("change = 0.005", "change = 0.05"), ("limit = 0.035", "limit = 0.01"), ("p = [-0.03, 0.03]", "p = [-0.05, 0.03]"), ("horizon = 2", "horizon = 3"), ("horizon = 2", "horizon = 1"), ("x = [-1, 1]\ny", "x = [-0.7, 1]\ny"), ("kappa = 0.6", "kappa = 0.2"), ("kappa = [0.4, 0.6]", "kappa = [0.1, 0.6]"), ("d = [-0.2, 0.2]", "d = [-0.4, 0.2]"), ("kappa = 0.3\n", "kappa = 0.1\n"), ('correction = ["shift"]', ""), ("g = 9.81", "g = 9.5"), ("T = [0.40, 0.41]", "T = [0.39, 0.41]"), ("[-0.05, 0.05], within", "[-0.06, 0.05], within"), ("[-0.1, 0.1], within", "[-0.11, 0.1], within"), ("loss = [0.024, 0.026]", "loss = [0.02, 0.026]"), ("x <= 0.5", "x <= 0.05"), ("range = [-0.2, 1.0]", "range = [-0.1, 0.9]"),
     ] if a in text]  # fmt: skip
     assert harder
     for old, new in harder:

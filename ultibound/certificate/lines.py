@@ -20,6 +20,7 @@ from ..checker.ranges import Evaluator
 from ..checker.reals import Scaled, Undefined
 from ..checker.rules import Line, Proof, Rejected, place
 from ..checker.statement import read_statement
+from ..checker.terms import Terms
 from ..claim import Claim
 
 DIGITS = 25
@@ -30,6 +31,14 @@ FEW_STEPS = 50  # of an exact path: its fractions grow with every step
 IRRATIONAL = frozenset(
     ["flow", "pi", "exp", "log", "sin", "cos", "tan", "asin", "acos", "atan", "sinh", "cosh", "tanh", "sqrt"]
 )
+
+
+def growing(terms: Terms, k: int) -> bool:
+    """Whether exact fractions grow with every step that repeats a term: products, quotients, powers and readings."""
+    op, args, _ = terms.all[k]
+    factors = [a for a in args if terms.all[a][0] != "number"]
+    by = op == "div" and terms.all[args[1]][0] != "number"
+    return op in ("power", "reading") or (op == "mul" and len(factors) > 1) or by
 
 
 class Writer:
@@ -97,6 +106,7 @@ class Writer:
             cells <= RATIONAL_CELLS
             and len(below) <= RATIONAL_TERMS
             and not any(terms.all[k][0] in IRRATIONAL for k in below)
+            and not (self.derivation.statement.horizon > 1 and any(growing(terms, k) for k in below))
         )
 
     def enclosed(

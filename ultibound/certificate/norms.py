@@ -22,7 +22,7 @@ from ..checker.products import traced
 from ..checker.reals import Undefined
 from ..checker.rules import Line, place
 from ..checker.several import compared, hull, keyed, middles, movements
-from .lines import IRRATIONAL, RATIONAL_CELLS, RATIONAL_TERMS, Writer, downward, upward
+from .lines import IRRATIONAL, RATIONAL_CELLS, RATIONAL_TERMS, Writer, downward, growing, upward
 
 DIGITS = 25
 MOST_EXACT = 8  # rows of a comparison solved in rationals
@@ -98,7 +98,8 @@ class NormWriter(Writer):
             for v in d.meaning(name, domain).variables:
                 cells = max(cells, len(v.cells))
         few = cells <= RATIONAL_CELLS and len(below) <= RATIONAL_TERMS
-        return few and not any(d.terms.all[k][0] in IRRATIONAL for k in below)
+        long = d.statement.horizon > 1 and any(growing(d.terms, k) for k in below)
+        return few and not long and not any(d.terms.all[k][0] in IRRATIONAL for k in below)
 
     def matrix_seconds(self, proves: str, bits: int, on: int) -> float:
         """How long one leaf of a matrix takes in the checker's arithmetic: the first cell, the second time round."""

@@ -6,7 +6,7 @@ from collections.abc import Callable
 from contextlib import suppress
 from dataclasses import replace
 from fractions import Fraction
-from math import floor, prod
+from math import floor, inf, prod
 
 from ..bounding.evaluate import to_float
 from ..certificate.certificate import sealed
@@ -96,6 +96,7 @@ class Attempt:
         self.ranges = Encloser(claim, self.obligations.graph, self.writer, gap, until, watch)
         self.near_region = False
         self.smaller: Fraction | None = None
+        self.reach = inf  # radius of a ball from which the steps within a horizon stay in the region (an estimate)
         self.moved = 0.0  # how far held quantities move the target in a step
         self.pairs: dict[str, int] = {}
         self._prove()
@@ -170,6 +171,8 @@ class Attempt:
                 break
             uses.append(step)
             ends = self.writer.proof.lines[step].concludes
+            if ends["gain"] > 0:
+                self.reach = min(self.reach, to_float((most - ends["residual"]) / ends["gain"]))
             if domain.kind == "region" or ends["gain"] * domain.radius + ends["residual"] > most:
                 break
             try:
@@ -365,6 +368,9 @@ class Attempt:
         profile = Profile(self.ranges.runner(error, False), error, f"error({o.state})", to_float(self._moved(moves)))
         if domain.kind == "ball":
             kept = profile.largest_kept(SPARE)
+            if lost and kept is not None and self.reach < kept:
+                kept = self.reach * (1 - SPARE)
+                kept = kept if profile.at(kept) * (1 + SPARE) < kept else None
             if kept is not None and self.within is None and kept < 0.995 * to_float(outermost):
                 self.smaller = Fraction(f"{kept:.4g}")
         if lost:
