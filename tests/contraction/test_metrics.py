@@ -10,8 +10,9 @@ from typing import Any
 import numpy as np
 import pytest
 
-from ultibound.contraction import metrics
-from ultibound.contraction.metrics import KINDS, Proposal, comparison_vector, least_above, proposals
+from ultibound.contraction import programmes
+from ultibound.contraction.metrics import KINDS, Proposal, proposals
+from ultibound.contraction.polytopes import comparison_vector, least_above
 
 NONE = np.zeros((0, 2))
 CORNERS = np.array([[a, b] for a in (1.0, -1.0) for b in (1.0, -1.0)])
@@ -302,7 +303,7 @@ class TestSolversThatFail:
             return answer
 
         good = self.judged()
-        monkeypatch.setattr(metrics, "call", spoiled)
+        monkeypatch.setattr(programmes, "call", spoiled)
         found = self.judged()
         assert tried == {"CLARABEL", "SCS"}
         assert good[0].gain < 1
@@ -313,7 +314,7 @@ class TestSolversThatFail:
         def spoiled(*_: Any) -> Any:
             raise error
 
-        monkeypatch.setattr(metrics, "call", spoiled)
+        monkeypatch.setattr(programmes, "call", spoiled)
         self.judged()
 
     def test_no_such_library(self, monkeypatch: pytest.MonkeyPatch) -> None:
@@ -321,22 +322,22 @@ class TestSolversThatFail:
         self.judged()
 
     def test_the_next_solver_is_tried(self, monkeypatch: pytest.MonkeyPatch) -> None:
-        good, real = self.judged()[0], metrics.call
+        good, real = self.judged()[0], programmes.call
 
         def spoiled(problem: Any, variable: Any, solver: str) -> Any:
             if solver == "CLARABEL":
                 raise RuntimeError
             return real(problem, variable, solver)
 
-        monkeypatch.setattr(metrics, "call", spoiled)
+        monkeypatch.setattr(programmes, "call", spoiled)
         assert share(self.judged()[0]) <= share(good) * 1.1
 
     def test_every_other_answer_missing(self, monkeypatch: pytest.MonkeyPatch) -> None:
-        good, real, count = self.judged()[0], metrics.call, [0]
+        good, real, count = self.judged()[0], programmes.call, [0]
 
         def spoiled(problem: Any, variable: Any, solver: str) -> Any:
             count[0] += 1
             return ("infeasible", None) if count[0] % 2 else real(problem, variable, solver)
 
-        monkeypatch.setattr(metrics, "call", spoiled)
+        monkeypatch.setattr(programmes, "call", spoiled)
         assert share(self.judged()[0]) <= share(good) * 1.2
