@@ -8,12 +8,13 @@ from __future__ import annotations
 
 from collections.abc import Sequence
 from fractions import Fraction as Q
+from types import SimpleNamespace
 from typing import Any
 
 import pytest
 
 import ultibound.checker
-from tests.checker.test_boundaries import GONE, STEP, Case, Draft, Entries, Question, but, refuses, sealed
+from tests.checker.test_boundaries import BASE, GONE, STEP, Case, Draft, Entries, Question, but, refuses, sealed
 
 CASES: dict[str, Question] = {}
 
@@ -494,20 +495,105 @@ def moving() -> None:
     reject("moves in another order", but(good, f"proof {last - 1} uses", [kept, *tables, *moves[::-1]]), f"proof line {last}", "lines about")
 
 
+def slower(entries: Entries, maps: tuple[str, str], figures: dict[str, tuple[str, str]], b: dict[str, str]) -> Entries:
+    """The regions with maps of other gains and residuals, and the bounds that they have."""
+    found = but(entries, "claim text", entries["claim"]["text"].replace(MAPS[0], maps[0]).replace(MAPS[1], maps[1]))
+    for line in found["proof"]:
+        part, _, name = line["proves"].rpartition(":")
+        if part in figures:
+            gain, residual = figures[part]
+            line["concludes"] = {"gain": gain, "residual": residual} if name == "slope" else dict.fromkeys(line["concludes"], gain if name == "slopes" else residual)
+        elif "b" in line["witness"]:
+            line["witness"]["b"] = {s: [x] for s, x in b.items()}
+            line["concludes"] = {key: b[key.partition(":")[0]] for key in line["concludes"]}
+    return found
+
+
 def at_rest() -> None:
     """No residual, and so a bound of 0."""
-    good = regions().found("region", [("settles", "proved")])
-    still = but(good, "claim text", good["claim"]["text"].replace("+ p", "+ 0*p").replace("x/4 + q", "0*x + 0*q"))
-    for line in still["proof"]:
-        if "misses" in line["proves"]:
-            line["concludes"] = dict.fromkeys(line["concludes"], "0")
-        if line["proves"] == "right>left:slopes":
-            line["concludes"] = dict.fromkeys(line["concludes"], "0")
-        if line["rule"] == "slope":
-            line["concludes"] = {"gain": "3/2" if "left>" in line["proves"] else "0", "residual": "0"}
-        if line["rule"] in ("graph-bound", "graph-componentwise"):
-            line["witness"]["b"], line["concludes"] = {"left": ["0"], "right": ["0"]}, dict.fromkeys(line["concludes"], "0")
+    asked = [("settles", "proved"), ("steps(x, 0, 0) <= 0", "proved"), ("steps(x, 1, 0) <= 2", "proved"), ("steps(x, 1, 0) <= 1", "undecided"), ('"steps(x, 1, 0) <= 1"\nin = "right"', "proved"), ('"steps(x, 1, 0) <= 0"\nin = "right"', "undecided"),
+             (f"steps(x, 0, 0 - 1{STEP}) <= 9", "undecided")]
+    good = regions([that for that, _ in asked]).found("region", asked)
+    still = slower(good, ("3*x/2 + 0*p", "0*x + 0*q"), {"left>right": ("3/2", "0"), "right>left": ("0", "0")}, {"left": "0", "right": "0"})
+    judged("at rest", still)
     exact("at rest", still, {"bound": ("0", "0"), "gain": ("3/2", "3/2"), "residual": ("0", "0"), "states x push": ("1", None)})
+
+
+def pushed_anew() -> None:
+    """A state that is forgotten on one step: what pushes it there decides alone whether it stays within a level."""
+    asked = [('"steps(x, 0, 1/16) <= 0"\nin = "right"', "proved"), (f'"steps(x, 0, 1/16 - 1{STEP}) <= 0"\nin = "right"', "undecided")]
+    good = regions([that for that, _ in asked]).found("region", asked)
+    judged("pushed anew", slower(good, ("x/4 + 0*p", "0*x + q"), {"left>right": ("1/4", "0"), "right>left": ("0", "1/16")}, {"left": "1/16", "right": "1/64"}))
+
+
+def of_no_width() -> None:
+    """A ball of radius 0, kept as the next step leads onto the target, leaves nothing to ask about; one of a hair does."""
+    asked = ["settles", "bound(x) <= 1", "gain <= 1/2", "radius(x) >= 0"]
+    for top in ("", "shrink = true"):
+        for room, edge, kind in (("0", "0", "smaller ball"), (hair("0", 1), hair("0", -1), "ball")):
+            d = Steps(claim("x/2", "0*x", (f'["{edge}", 3]', "[-1, 1]"), asked, top=top))
+            left, lt, at = d.metric("left"), d.range("left:target[x]", "0", "0"), d.point("left:target[x]", {}, "0")
+            one = d.theorem("largest-ball", "left:ball", [left, lt, at], radius=room, outer=room)
+            right, rt, at = d.metric("right"), d.range("right:target[x]", "0", "0"), d.point("right:target[x]", {}, "0")
+            two = d.theorem("largest-ball", "right:ball", [right, rt, at], radius="1", outer="1")
+            if kind == "ball":
+                d.point("left:image[x]", {"x": "3"}, "3/2")
+            pairs = []
+            for e, k, on, norm in (("left>right", "1/2", one, right), ("right>left", "0", two, left)):
+                pairs.append(d.theorem("slope", f"{e}:slope", [d.matrix(f"{e}:slopes", k, [on, norm]), d.matrix(f"{e}:misses", "0", [on, norm])], gain=k, residual="0"))
+            kept = d.theorem("graph-balls", "invariant", [one, two, *pairs])
+            d.bound([kept, *pairs], {"left": "1", "right": "1"}, {"left": "0", "right": "0"}, left="0", right="0")
+            judged(f"a ball of radius {room} {top}", d.found(kind, [(a, "proved" if kind == "ball" or a.startswith("radius") else "undecided") for a in asked]))
+            if kind != "ball":
+                d.point("left:image[x]", {"x": "3"}, "3/2")
+                reject(f"a point that leaves, and a ball of radius 0 {top}", d.found("ball", [(a, "undecided") for a in asked]), "results", "'ball' is claimed, 'smaller ball' was derived")
+
+
+def turned() -> None:
+    """The step from left to right with a falling slope: the larger magnitude of an entry is at its lower end."""
+    good = regions().found("region", [("settles", "proved")])
+    down = but(good, "claim text", good["claim"]["text"].replace("3*x/2 + p", "-3*x/2 + p"))
+    accept("a falling slope", down)
+    tight("a falling slope", down, {19: (("1,1", -1, "less than what the leaves show"),), 12: (("norm", -1, "a leaf is not shown"),)})
+
+
+def short_lengths() -> None:
+    """A norm of the proof's own in which a state may be twice its length: a gain is one all the same."""
+    asked = [("settles", "proved"), ("gain <= 13/4", "proved"), (f"gain <= 13/4 - 1{STEP}", "undecided"), ("residual <= 5/16", "undecided"), ("bound <= 11/4", "undecided"), ("bound(x) <= 7/20", "proved")]
+    lines = two([a for a, _ in asked])
+    for number, figures in {5: {"radius": "1/2", "outer": "1/2"}, 16: {"norm": "13/4"}, 18: {"gain": "13/4"}, 19: {"norm": "1/4"}, 20: {"norm": "1/16"}, 21: {"gain": "1/4", "residual": "1/16"},
+                            22: {"left": "3/4"}, 28: {"lower": "13/4"}, 30: {"lower": "1/4"}, 31: {"lower": "1/16"}}.items():
+        lines.proof[number - 1]["concludes"] |= figures
+    lines.proof[0]["witness"] = {"kind": "box", "rows": [["1/2", "0"], ["0", "1"]], "inverse": [["2", "0"], ["0", "1"]]}
+    lines.proof[21]["witness"] = {"p": {"left": ["1/2"], "right": ["7/4"]}, "b": {"left": ["3/4"], "right": ["11/4"]}}
+    norms = {"kind": "box", "weights": {"x": "1/2", "y": "1"}}, NORMS[1]
+    judged("short lengths", lines.found("region", asked, norms, "xy"))
+
+
+def corrected() -> None:
+    """Where a correction is named, another route may show a smaller gain; residuals are the same by all."""
+    asked = ["gain <= 3/2", "gain < 3/2", "residual < 1/8", "residual <= 1/8"]
+    for top, verdict in (("", "undecided"), ('route = "slope"\n', "refuted")):
+        found = list(zip(asked, ("proved", verdict, "refuted", "proved"), strict=True))
+        judged(f"a correction {top}", regions(asked, top=f'{top}correction = ["f"]\n[define]\nf = "x"').found("region", found))
+
+
+@unit
+def steps_gone_through(checker: Any) -> None:
+    """At most 20000 of them, with three at a time 6666: from level 6666 down by 1 each is one too many."""
+    pairs = {step: (Q(1), Q(-1)) for step in ("ab", "bc", "ca")}
+    results, wanted = SimpleNamespace(pairs=lambda: pairs), dict.fromkeys("abc", Q(0))
+    counts = [checker.graph_outcomes.GraphResults.count_of(results, {"a": Q(n)}, wanted) for n in (0, 6665, 6666)]
+    assert counts == [0, 6665, None]
+
+
+@unit
+def levels_below(checker: Any) -> None:
+    """Of a, which nothing leads to, the level is b's less 1: none below 0, where b's alone would be kept."""
+    results = SimpleNamespace(each=("a", "b"), pairs=lambda: {("a", "b"): (Q(1), Q(1)), ("b", "b"): (Q(0), Q(0))})
+    below, hairs = checker.graph_outcomes.GraphResults.below, Q("1" + STEP)
+    assert below(results, {"a": Q(1), "b": Q(1)}) == {"a": 0, "b": 1}
+    assert below(results, {"a": Q(1), "b": 1 - hairs}) is None and below(results, {"a": -hairs, "b": Q(1)}) is None
 
 
 def without(entries: Entries, *lines: int) -> Entries:
@@ -555,6 +641,7 @@ def of_the_ground() -> None:
         reject(f"a stance that may not last, {n}", without(good, n), "results", "results.set.kind: 'region' is claimed, None was derived")
 
 
+accept("one map for every step", BASE)
 in_regions()
 what_is_kept()
 two_states()
@@ -562,6 +649,11 @@ not_kept()
 of_another_set()
 moving()
 at_rest()
+pushed_anew()
+of_no_width()
+turned()
+short_lengths()
+corrected()
 of_the_ground()
 in_balls()
 stepping_where()

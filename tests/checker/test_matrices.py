@@ -463,6 +463,42 @@ def entries_at_equality(m: Any) -> None:
 
 
 @question
+def long_numbers_are_rounded_outward(m: Any) -> None:
+    rng = random.Random(5)
+    for n, c, count, scale in product((2, 3), (1, 3), (0, 2), (Q(1), Q(1, 10**30), Q(10**12))):
+        unit = 3**140
+
+        def part(most: int, n: int = n, c: int = c, unit: int = unit, scale: Q = scale) -> list[list[int]]:
+            return [[int(scale * rng.randint(-most * unit, most * unit)) for _ in range(c)] for _ in range(n)]
+
+        long = m.Image(part(3), [part(1) for _ in range(count)], m.magnitudes(part(1)), unit)
+        short = long.shortened()
+        assert short.unit & (short.unit - 1) == 0 and short != long
+        largest = max(
+            map(abs, m.flat(short.centre) + [x for g in short.slopes for x in m.flat(g)] + m.flat(short.rest))
+        )
+        assert 78 <= largest.bit_length() <= 82
+        for i, j in product(range(n), range(c)):
+            for t in product((-1, 1), repeat=count):
+                for sign in (-1, 1):
+                    at, near = (
+                        Q(x.centre[i][j] + sum(s * g[i][j] for s, g in zip(t, x.slopes, strict=True)), x.unit)
+                        for x in (long, short)
+                    )
+                    most, wide = at + sign * Q(long.rest[i][j], unit), Q(short.rest[i][j], short.unit)
+                    assert abs(most - near) <= wide <= Q(long.rest[i][j], unit) + Q(2 + count, short.unit)
+    brief = m.Image([[3]], [[[1]]], [[0]], (1 << 200) - 1)
+    assert brief.shortened() is brief
+    longer = m.Image([[3]], [[[1]]], [[0]], 1 << 200)
+    assert (
+        longer.shortened().rest == [[2]]
+        and longer.shortened().centre[0][0] * longer.unit == 3 * longer.shortened().unit
+    )
+    nothing = m.Image([[0]], [], [[0]], 1 << 300)
+    assert nothing.shortened().centre == [[0]] and nothing.shortened().rest == [[1]]
+
+
+@question
 def what_vanishes(m: Any) -> None:
     rows = matrix([1, 0], [0, 1], [Q(1, 3), -2])
     for z, good in (

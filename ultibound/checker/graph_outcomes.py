@@ -96,8 +96,9 @@ class StepResults(Results):
         found = [(x.concludes["lower"], n) for n, x in lines if x.domain == self.before.domain]
         if not found:
             return None
-        self.needed.add(max(found)[1])
-        return max(max(found)[0], Fraction(0))
+        lower, number = max(found)
+        self.needed.add(number)
+        return max(lower, Fraction(0))
 
 
 class GraphResults(Results):
@@ -261,7 +262,7 @@ class GraphResults(Results):
         """proofs/graph.md (6): steps after which a state stays within `to`, from any of these stances."""
         start, end = (constant(e, self.statement.values) for e in (r.start, r.end))
         i, limit, count = self.states.index(r.state), self.wide(several, r.state), None
-        if limit is not None and less(start[1], limit.lower, equal=True) and end[0] >= 0:
+        if limit is not None and less(start[1], limit.lower, equal=True):
             levels = {x.part: start[1] * x.metric.unit(i)[1] for x in several}
             wanted = self.below({name: end[0] / x.metric.support(i) for name, x in self.each.items()})
             count = None if wanted is None else self.count_of(levels, wanted)

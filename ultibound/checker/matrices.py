@@ -25,6 +25,7 @@ MOST_SLOPES = 8  # whose signs are told apart; further ones count as rest
 LONGEST = 4000  # bits of a matrix's whole numbers, and of the denominator they share
 ROOT_BITS = 72  # of a rounded square root
 ENTRY_BITS = 160  # of an entry, rounded outward
+LONG, SHORT = 200, 80  # bits of a denominator that are too many for determinants; of the largest number left then
 
 
 @dataclass(frozen=True)
@@ -145,6 +146,19 @@ class Image:
     rest: Whole
     unit: int  # how many make 1
 
+    def shortened(self) -> Image:
+        """One that contains it, of shorter numbers where these are long: proofs/matrix.md, Numbers."""
+        if self.unit.bit_length() <= LONG:
+            return self
+        most = max(map(abs, (*flat(self.centre), *(x for g in self.slopes for x in flat(g)), *flat(self.rest))))
+        bits = max(SHORT + self.unit.bit_length() - most.bit_length(), 0)
+        centre, *slopes = (
+            [[(x << bits) // self.unit for x in row] for row in part] for part in (self.centre, *self.slopes)
+        )
+        # each of these is less than 1 below what it stands for
+        rest = [[-(-(x << bits) // self.unit) + 1 + len(slopes) for x in row] for row in self.rest]
+        return Image(centre, slopes, rest, 1 << bits)
+
     def rows(self) -> Iterator[int]:
         """Upper bounds of the rows' sums of magnitudes, in units: proofs/matrix.md (2)."""
         for i, row in enumerate(self.centre):
@@ -258,7 +272,8 @@ def seen(metric: Metric, leaf: Leaf) -> Image:
     columns = len(leaf.centre[0]) if leaf.centre else 0
     if columns not in (1, len(metric.inverse)):
         raise Rejected("matrix: a vector or a square matrix is bounded")
-    return image(metric.frame, leaf, columns > 1)
+    found = image(metric.frame, leaf, columns > 1)
+    return found.shortened() if metric.kind == "ellipsoid" else found
 
 
 def image(frame: Frame, leaf: Leaf, square: bool) -> Image:
