@@ -5,6 +5,7 @@ from __future__ import annotations
 import os
 from collections.abc import Callable
 from fractions import Fraction
+from pathlib import Path
 
 import numpy as np
 import pytest
@@ -64,3 +65,14 @@ def test_bounds_of_linear_maps_tend_to_the_limit_set(rows: list[list[str]]) -> N
         ratios[horizon] = [b / e for b, e in zip(found, exact, strict=True)]
     assert all(1 - 1e-9 <= late <= early + 1e-9 for early, late in zip(ratios[3], ratios[12], strict=True)), ratios
     assert max(ratios[12]) <= 1.0001, ratios
+
+
+def test_waiting_at_its_mark() -> None:
+    """What single steps leave undecided; bounds within 1e-5 of what an orbit attains."""
+    text = (Path(__file__).parents[1] / "ultibound" / "examples" / "waiting.toml").read_text()
+    found = proved(text)
+    assert [r["verdict"] for r in found.results["requirements"]] == ["proved"] * 7
+    for figures in found.results["states"].values():
+        assert 1 <= Fraction(figures["bound"]["upper"]) / Fraction(figures["bound"]["lower"]) <= 1 + Fraction(1, 10**5)
+    single = proved(text.replace("horizon = 12", "horizon = 1")).results["requirements"]
+    assert [r["verdict"] for r in single[1:3]] == ["undecided"] * 2

@@ -131,7 +131,7 @@ def _prove(path: Path, output: Path | None, settings: dict[str, str], as_json: b
     units = {n: q.unit for n, q in claim.stances[0].states.items()}
     unit = next(iter(units.values()))
     asked = [r.stance for r in claim.requirements]
-    show(outcome(claim.title or path.name, certificate.results, units, asked), as_json)
+    show(outcome(claim.title or path.name, certificate.results, units, asked, claim.horizon), as_json)
     if "split" in certificate.results["routes"]:
         found = residual_by_cell(certificate)
         if len(found) > 1:

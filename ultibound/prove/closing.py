@@ -47,7 +47,13 @@ def closed_in(
 ) -> None:  # fmt: skip
     """Boxes that trajectories end up in, one inside the other, and the bounds by comparison over each."""
     w, states, rooms = a.writer, a.obligations.states, a.rooms()
-    if a.claim.horizon > 1:
+
+    def along_the_map() -> None:
+        along = chain_over(a, a.domain, [to_float(x) for x in rooms])
+        compare(a, invariant, invariant, (slopes, a.leaves["slopes"]), misses, moves, [], along)
+
+    if a.claim.horizon > 1:  # where single steps end up is not known
+        along_the_map()
         return
     for first in range(ROUNDS):
         known = least(a)
@@ -65,8 +71,7 @@ def closed_in(
                 over_box(a, on, invariant, wide, misses, moves, bases)
         except Rejected:  # the box reaches beyond the region: what is left is the set itself
             if first == 0:
-                along = chain_over(a, a.domain, [to_float(x) for x in rooms])
-                compare(a, invariant, invariant, (slopes, a.leaves["slopes"]), misses, moves, [], along)
+                along_the_map()
         a.ranges.spent += time.monotonic() - began
         if all(after[0] > known[s][0] * Fraction(1 - NOTABLE) for s, after in least(a).items()):
             return

@@ -22,11 +22,11 @@ STYLES = {"proved": "bold green", "refuted": "bold red", "undecided": "bold yell
 
 
 def outcome(
-    title: str, results: dict[str, Any], units: dict[str, str], asked: Sequence[str | None] = ()
+    title: str, results: dict[str, Any], units: dict[str, str], asked: Sequence[str | None] = (), horizon: int = 1
 ) -> RenderableType:
     """Quantities with what each gives away, then a row a requirement; `units` are the states'.
 
-    `asked`: the stance that each requirement is about, where it is about one.
+    `asked`: the stance that each requirement is about, where it is about one. `horizon`: steps taken together.
     """
     quantities = Table(title=Text(title), title_justify="left", show_edge=False, pad_edge=False)
     for heading in ("quantity", "proved", "attained", "gives away", "unit"):
@@ -48,6 +48,7 @@ def outcome(
         where = "no sets that are mapped into each other" if inside is None else f"{where} of every stance"
     if len(units) > 1 and results["metric"] is not None:
         where += f"; norm: {_norm(results['metric'])}"
+    where += f"; gain and residual are those of {horizon} steps" if horizon > 1 else ""
     verdicts = Table(show_edge=False, pad_edge=False)
     for heading in ("requirement", "verdict", "value"):
         verdicts.add_column(heading, overflow="fold")
