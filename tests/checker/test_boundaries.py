@@ -844,6 +844,9 @@ def ends_of_sets() -> None:
 ends_of_sets()
 
 
+ONE_STANCE, TWO_STANCES = '[stance.only]\nthen = "only"', '[stance.a]\nthen = "b"\n[stance.b]\nthen = "a"'
+
+
 def routes() -> None:
     """gain < c is refuted only where no other route could give a smaller gain."""
     for name, top, verdict in (("best", 'correction = ["f"]', "undecided"), ("slope", 'correction = ["f"]\nroute = "slope"', "refuted"), ("plain", 'route = "slope"', "refuted"), ("said best", 'route = "best"', "refuted")):
@@ -874,14 +877,22 @@ def routes() -> None:
     for top in ('route = "curve"', 'route = "split"\ncorrection = ["f"]'):
         text = claim(state="[-1, 1]\nu = [0, 1]", top=top, rest="[define]\nf = 1").replace("[target]", 'u = "u"\n[target]').replace('v = "0"', 'v = "0"\nu = "0"')
         reject(f"two states, {top}", but(BASE, "claim text", text), "claim", "only the route slope can be checked for two to 6 states")
-    stance = '[stance.only]\nthen = "only"'
-    reject("a named stance", but(BASE, "claim text", claim(rest=stance)), "claim", "only claims of one stance can be checked")
-    reject("stances", but(BASE, "claim text", claim(rest='[stance.a]\nthen = "b"\n[stance.b]\nthen = "a"')), "claim", "one stance")
+    reject("a named stance", but(BASE, "claim text", claim(rest=ONE_STANCE)), "proof line 1", "range: not known of all stances together")
+    reject("stances", but(BASE, "claim text", claim(rest=TWO_STANCES)), "proof line 1", "range: not known of all stances together")
     running = '[dynamics]\nduration = 1\nstart = { x = 0 }\nrate = { x = 0 }'
     reject("dynamics of which nothing is shown", but(BASE, "claim text", claim(rest=running)), "results", "results.set.kind: 'region' is claimed, None was derived")
 
 
 routes()
+
+
+@unit
+def one_stance_at_a_time(checker: Any) -> None:
+    read, derivation = checker.statement.read_statement, checker.derive.Derivation
+    assert derivation(read(claim(), {}, {})).state == "v"
+    for text in (ONE_STANCE, TWO_STANCES):
+        with refuses(checker.calculus.Unprovable, "only claims of one stance can be checked"):
+            derivation(read(claim(rest=text), {}, {}))
 
 
 def remarks() -> None:
