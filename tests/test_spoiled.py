@@ -524,8 +524,8 @@ def test_a_line_retargeted_is_rejected(entries: dict[str, Any]) -> None:
 def test_a_rule_or_use_exchanged_is_rejected(entries: dict[str, Any]) -> None:
     for number, line in enumerate(entries["proof"]):
         for uses in ([], [number + 1], [0], [True], ["1"], line["uses"] * 2, line["uses"][::-1]):
-            if uses == line["uses"]:
-                continue
+            if uses == line["uses"] or (line["rule"] == "absorbed" and set(uses) == set(line["uses"])):
+                continue  # which takes any number of bounds, in any order
 
             def spoil(e: dict[str, Any], number: int = number, uses: Any = uses) -> None:
                 e["proof"][number]["uses"] = uses
