@@ -273,6 +273,8 @@ EQUIVALENT: dict[Key, str] = {
     ("models", "steepest", "degrees[0] ** 2 * (degrees[0] ** 2 - 1) // 3", "-(-(degrees[0] ** 2 * (degrees[0] ** 2 - 1)) // 3)"):
         "n n (n n - 1) is a multiple of 3",
     ("rates", "Coefficients.reading", "len(corners) // 2", "-(-len(corners) // 2)"): "a cell has an even number of corners",
+    ("matrices", "Image.shortened", "(x << bits) // self.unit", "-(-(x << bits) // self.unit)"):
+        "rounded up or down, by less than 1, for which the rest allows either way",
     ("several", "gone_through", "known[1] is flows", "known[1] is not flows"):
         "leaves are kept to save time: every flow on a proof is one of the same stance, and encloses it",
     ("several", "gone_through", "count += 1", "count -= 1"): "how many leaves are kept to save time changes no leaf",

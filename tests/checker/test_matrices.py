@@ -499,6 +499,16 @@ def long_numbers_are_rounded_outward(m: Any) -> None:
 
 
 @question
+def only_determinants_need_short_numbers(m: Any) -> None:
+    size = Q(1, 3**140)
+    of = leaf(m, diagonal(size, size), [], diagonal(0, 0))
+    for kind, exact in (("box", True), ("polytope", True), ("ellipsoid", False)):
+        plain = norm(m, kind, diagonal(1, 1))
+        assert m.norm_at_most(plain, of, size) is exact and m.norm_at_most(plain, of, size * (1 + Q(1, 2**70)))
+        assert not m.norm_at_most(plain, of, size * (1 - Q(1, 2**70)))
+
+
+@question
 def what_vanishes(m: Any) -> None:
     rows = matrix([1, 0], [0, 1], [Q(1, 3), -2])
     for z, good in (
