@@ -448,9 +448,9 @@ class Run:
                 if k < 1:
                     reach = k**step * start_size + e * (1 - k**step) / (1 - k)
                     assert np.all(size <= reach * (1 + 1e-6) + 1e-9), (self.seed, "envelope", step)
-                if k < 1 and step > self.length - 40:
+                if step > self.length - 40:
                     for i, bound in enumerate(self.bounds):  # in the long run: what is left fades no slower than this
-                        left = self.radius * float(wide[i]) * k ** (step / 2)
+                        left = self.radius * float(wide[i]) * k ** (step / 2) if k < 1 else 0.0
                         assert bound is None or np.all(np.abs(error[i]) <= bound * (1 + 1e-6) + left + 1e-9), (
                             self.seed,
                             "bound in the long run",
