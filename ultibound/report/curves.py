@@ -15,14 +15,16 @@ from ..claim import Claim
 from ..claim.errors import Bad, ClaimError
 from ..claim.expression import Expression, Node
 from ..claim.model import Quantity, Range
-from ..claim.obligations import Domain, Obligation, Obligations
+from ..claim.obligations import Domain, Obligation, Obligations, together
 from ..contraction.samples import drawn
+from ..polynomial.flows import FlowTable
 from ..stepmap.symbolic import compiled
 from .accepted import Accepted
 from .cells import Cell
+from .margins import exact
 from .walks import PointMap, Walks, flows_in, measured, rows_of
 
-POINTS, SEED, GAINS = 6000, 1, 25
+POINTS, FEWER, SEED, GAINS = 6000, 1000, 1, 25
 BINS = 60
 
 
@@ -102,7 +104,7 @@ class Plane:
 
 def end(value: dict[str, Any] | None, name: str) -> float | None:
     """An end of a quantity of `results` as a float for drawing."""
-    return None if value is None or value[name] is None else to_float(Fraction(value[name]))
+    return None if value is None or value[name] is None else to_float(exact(value[name]))
 
 
 def one_map(found: Accepted) -> bool:
@@ -199,7 +201,7 @@ def bands(found: Accepted, units: Sequence[str]) -> list[Band]:
     """The sensitivities proved; `units` of each."""
     out = []
     for b, unit in zip(found.results["sensitivities"], units, strict=True):
-        out.append(Band(b["of"], b["by"], to_float(Fraction(b["lower"])), to_float(Fraction(b["upper"])), unit))
+        out.append(Band(b["of"], b["by"], to_float(exact(b["lower"])), to_float(exact(b["upper"])), unit))
     return out
 
 
@@ -246,26 +248,17 @@ def _largest(found: Accepted, o: Obligations, slopes: Any, gain: str, values: Fl
     metric = found.results["metric"]
     v, p = rows_of(metric, o.states)
     inverse = np.linalg.pinv(v)
+    rng = np.random.default_rng(SEED)  # the same points at every gain
+    known = {x.name: _drawn(x, rng)[:FEWER] for x in together([s for row in slopes for s in row])}
+    runners = [[_slope(o, s, flows) for s in row] for row in slopes]
     k = np.zeros(len(values))
     for number, value in enumerate(values):
-        rng = np.random.default_rng(SEED)  # the same points at every gain
-        known: dict[str, Floats] = {}
-        matrix = np.zeros((POINTS // 6, len(o.states), len(o.states)))
-        for i, row in enumerate(slopes):
-            for j, slope in enumerate(row):
-                runner = Runner(
-                    compiled(o.graph, slope.root, slope.by, []),
-                    [x.name for x in slope.variables],
-                    o.claim.libraries,
-                    derivative=True,
-                    flows=flows,
-                )
-                for x in slope.variables:
-                    if x.name not in known:
-                        known[x.name] = _drawn(x, rng)[: len(matrix)]
-                known[gain] = np.full(len(matrix), value)
-                points = [known[x.name] for x in slope.variables]
-                box = np.stack(points, axis=1) if points else np.zeros((len(matrix), 0))
+        known[gain] = np.full(FEWER, value)
+        matrix = np.zeros((FEWER, len(o.states), len(o.states)))
+        for i, row in enumerate(runners):
+            for j, runner in enumerate(row):
+                points = [known[n] for n in runner.variables]
+                box = np.stack(points, axis=1) if points else np.zeros((FEWER, 0))
                 run = runner(box, box, gradient=False)
                 matrix[:, i, j] = np.where(np.abs(run.low) > np.abs(run.high), run.low, run.high)
         matrix = matrix[np.isfinite(matrix).all(axis=(1, 2))]
@@ -273,6 +266,11 @@ def _largest(found: Accepted, o: Obligations, slopes: Any, gain: str, values: Fl
         sizes = np.linalg.norm(turned, 2, axis=(1, 2)) if p is not None else np.abs(turned).sum(axis=2).max(axis=1)
         k[number] = sizes.max(initial=0.0)
     return OverGain(gain, values, k, at, end(found.results["gain"], "upper"))
+
+
+def _slope(o: Obligations, slope: Obligation, flows: FlowTable | None) -> Runner:
+    program = compiled(o.graph, slope.root, slope.by, [])
+    return Runner(program, [x.name for x in slope.variables], o.claim.libraries, derivative=True, flows=flows)
 
 
 def _fixed(claim: Claim) -> set[str]:

@@ -6,7 +6,9 @@ in print and by everyone. The bytes of a drawing depend on its numbers alone.
 
 from __future__ import annotations
 
-from collections.abc import Callable, Sequence
+import warnings
+from collections.abc import Callable, Iterator, Sequence
+from contextlib import contextmanager
 from functools import wraps
 from importlib.util import find_spec
 from io import StringIO
@@ -15,6 +17,7 @@ from typing import Any, TypeVar
 import numpy as np
 
 from .curves import Band, CellMap, Envelope, GainCurve, OverGain, Plane
+from .inert import visible
 from .margins import signed
 
 Axis = Any  # of matplotlib, which is not always installed
@@ -30,12 +33,21 @@ STYLE = {
     "lines.solid_capstyle": "butt", "hatch.linewidth": 0.7, "path.simplify": False,
 }  # fmt: skip
 SIZE = (4.6, 3.3)  # inches: at the width of a telephone the letters stay legible
+LONGEST = 24  # letters of a unit on an axis
 HOW = "Figures need matplotlib: pip install 'ultibound[report]'"
 
 
 def available() -> bool:
     """Whether figures can be drawn here."""
     return find_spec("matplotlib") is not None
+
+
+@contextmanager
+def styled(matplotlib: Any) -> Iterator[None]:
+    """The style for as long as something is drawn; letters that its font lacks are left to the reader's."""
+    with matplotlib.rc_context(STYLE), warnings.catch_warnings():
+        warnings.filterwarnings("ignore", "Glyph", UserWarning)
+        yield
 
 
 def drawing(draw: Callable[[D, Axis], None]) -> Callable[..., Axis]:
@@ -46,7 +58,7 @@ def drawing(draw: Callable[[D, Axis], None]) -> Callable[..., Axis]:
         import matplotlib
         from matplotlib.figure import Figure
 
-        with matplotlib.rc_context(STYLE):
+        with styled(matplotlib):
             if ax is None:
                 ax = Figure(figsize=SIZE, layout="constrained").add_subplot()
             draw(data, ax)
@@ -60,7 +72,7 @@ def svg(ax: Axis) -> str:
     import matplotlib
 
     out = StringIO()
-    with matplotlib.rc_context(STYLE):
+    with styled(matplotlib):
         nothing = dict.fromkeys(("Creator", "Date", "Format", "Type"))
         ax.figure.savefig(out, format="svg", metadata=nothing)
     text = out.getvalue()
@@ -68,7 +80,8 @@ def svg(ax: Axis) -> str:
 
 
 def labelled(name: str, unit: str) -> str:
-    return f"{name} ({unit})" if unit else f"{name} (1)"
+    shown = visible(unit)
+    return f"{name} ({shown if len(shown) <= LONGEST else shown[:LONGEST] + '…'})" if unit else f"{name} (1)"
 
 
 @drawing

@@ -9,6 +9,7 @@ from collections.abc import Sequence
 from dataclasses import dataclass
 from fractions import Fraction
 
+from ..checker.numerals import decimal_down
 from ..claim.expression import Expression, Node
 from ..claim.graph import Gate, Graph
 
@@ -43,27 +44,29 @@ def number(value: Fraction | int) -> Formula:
 
 def _decimal(q: Fraction) -> str:
     """A terminating decimal; of what is long only the first digits; "" for a fraction of short numbers."""
-    text = str(q.numerator) if q.denominator == 1 else ""
-    rest, places = q.denominator, 0
-    while rest > 1 and places < DIGITS and (rest % 2 == 0 or rest % 5 == 0):
-        rest = rest // 10 if rest % 10 == 0 else rest // 2 if rest % 2 == 0 else rest // 5
-        places += 1
-    if q.denominator > 1 and rest == 1:
-        scaled = q * 10**places
-        text = f"{scaled.numerator:0{places + 1}d}" if scaled.denominator == 1 else ""
-        text = f"{text[:-places]}.{text[-places:]}".rstrip("0").rstrip(".") if text else ""
-    if len(text) > DIGITS or max(q.numerator, q.denominator) >= 10**DIGITS:
-        try:
-            return f"{float(q):.10g}…"
-        except OverflowError:
-            return f"{str(q.numerator // q.denominator)[:10]}…"
-    return text
+    if max(q.numerator, q.denominator) >= 10**DIGITS:
+        return f"{_short(decimal_down(q, 10))}…"
+    rest = q.denominator
+    for prime in (2, 5):
+        while rest % prime == 0:
+            rest //= prime
+    return str(q) if q.denominator == 1 else decimal_down(q, DIGITS) if rest == 1 else ""
+
+
+def _short(text: str) -> str:
+    """A long decimal with an exponent."""
+    if len(text) <= 2 * DIGITS:
+        return text
+    units, _, decimals = text.partition(".")
+    digits = (units + decimals).lstrip("0")
+    power = len(units) - 1 if units != "0" else len(decimals.lstrip("0")) - len(decimals) - 1
+    return f"{digits[0]}.{digits[1:10]}".rstrip("0").rstrip(".") + f"e{power}"
 
 
 def symbol(name: str, sup: str = "") -> Formula:
     """A declared name: a Greek letter where it names one, what follows an underscore or a letter as a subscript."""
     base, _, sub = name.partition("_")
-    if not base or sub.isdigit() or (sub and not sub.replace("_", "")):
+    if not base or sub.isdigit() or name.endswith("_"):
         return Formula("symbol", text=name, sup=sup)  # h_0 must not look like h0
     if not sub and len(base) > 1 and base[0].isalpha() and base[1:].isdigit():
         base, sub = base[0], base[1:]

@@ -5,7 +5,10 @@ The page is built as a tree and written out by the standard library, so that tex
 
 from __future__ import annotations
 
-from xml.etree.ElementTree import Element, SubElement, fromstring, tostring
+import re
+from hashlib import sha256
+from html import escape
+from xml.etree.ElementTree import Element, SubElement, fromstring
 
 from .document import (
     Block,
@@ -27,7 +30,7 @@ from .inert import visible
 from .plain import text_of as spoken
 from .typeset import mathml
 
-POLICY = "default-src 'none'; style-src 'unsafe-inline'; base-uri 'none'; form-action 'none'"
+POLICY = "default-src 'none'; style-src 'unsafe-inline'; img-src data:; base-uri 'none'; form-action 'none'"
 STYLE = """
 :root { --paper: #fdfcf8; --ink: #1d2320; --quiet: #545b55; --line: #8b9189; --tint: #f1efe6; --proved: #14532d;
   --refuted: #8a1c12; --undecided: #6a4a00; --link: #1b4a6b; }
@@ -78,6 +81,7 @@ summary { cursor: pointer; }
   figure, tr { break-inside: avoid; } pre { white-space: pre-wrap; } }
 """
 MOST, LONG = 3, 34  # columns, and letters in a cell, that have room on a telephone
+VOID = ("link", "meta")  # elements without an end
 MARKS = {"proved": "✓", "refuted": "✗", "undecided": "?"}
 
 
@@ -110,8 +114,20 @@ def html(document: Document) -> bytes:
 
 
 def _written(root: Element) -> str:
-    text: str = tostring(root, encoding="unicode", method="html")
-    return text
+    """Markup of a tree; every letter of text and attributes that could be markup is escaped."""
+    parts: list[str] = []
+    stack: list[Element | str] = [root]
+    while stack:
+        e = stack.pop()
+        if isinstance(e, str):
+            parts.append(e)
+            continue
+        attributes = "".join(f' {k}="{escape(v)}"' for k, v in e.attrib.items())
+        parts.append(f"<{e.tag}{attributes}>{escape(e.text or '', quote=False)}")
+        tail = escape(e.tail or "", quote=False)
+        stack.append(tail if e.tag in VOID else f"</{e.tag}>{tail}")
+        stack += reversed(e)
+    return "".join(parts)
 
 
 def fragment(document: Document) -> str:
@@ -204,11 +220,20 @@ def _size(text: Text) -> int:
 def _figure(parent: Element, figure: Figure) -> None:
     inner = SubElement(parent, "figure")
     drawing = fromstring(figure.svg)
+    own = f"f{sha256(figure.svg.encode()).hexdigest()[:8]}-"  # names are of the page, so that no two figures share one
+    used = set(re.findall(r"#([\w.-]+)", figure.svg))
     for e in drawing.iter():
         e.tag = e.tag.rpartition("}")[2]
         for key in list(e.attrib):
-            if "}" in key:
-                e.set(key.rpartition("}")[2], e.attrib.pop(key))
+            value = (
+                re.sub(r"#(?=[\w.-]+(\)|$))", f"#{own}", e.attrib.pop(key))
+                if "#" in e.get(key, "")
+                else e.attrib.pop(key)
+            )
+            if key != "id":
+                e.set(key.rpartition("}")[2], value)
+            elif value in used:
+                e.set("id", own + value)
     for key in ("width", "height", "version"):
         drawing.attrib.pop(key, None)
     drawing.set("role", "img")

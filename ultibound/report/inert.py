@@ -26,7 +26,7 @@ _TEX_SIGNS = {
     "π": r"\ensuremath{\pi}", "ρ": r"\ensuremath{\rho}", "µ": r"\ensuremath{\mu}", "μ": r"\ensuremath{\mu}", "Φ":
         r"\ensuremath{\Phi}",
 }  # fmt: skip
-_MARKDOWN = re.compile(r"([\\`*_{}\[\]()#+\-.!|~$:^=@])")
+_MARKDOWN = re.compile(r"([\\`*_{}\[\]|~$^@]|:(?=//)|(?<=www)\.|^[-+=#]|(?<=^[0-9])[.)]|(?<=^[0-9][0-9])[.)])", re.I)
 
 
 def visible(text: str, lines: bool = False) -> str:

@@ -6,16 +6,15 @@ Every figure is rounded to the side on which it still holds.
 from __future__ import annotations
 
 from dataclasses import dataclass
-from decimal import ROUND_CEILING, ROUND_FLOOR, Context, Decimal
 from fractions import Fraction
 from typing import Any
 
+from ..checker.numerals import decimal_down, decimal_up, read_number
 from ..claim import Claim
 from ..claim.constants import constant
 from ..claim.model import Requirement
 
 SIGNIFICANT = 6
-LONGEST = 10_000  # digits of a number before it is rounded
 
 
 @dataclass(frozen=True, slots=True)
@@ -33,33 +32,14 @@ class Judged:
     remark: str
 
 
+def exact(x: Fraction | str) -> Fraction:
+    """A number of a certificate, of any length."""
+    return read_number(x) if isinstance(x, str) else x
+
+
 def rounded(x: Fraction | str, up: bool, digits: int = SIGNIFICANT) -> str:
     """A number to so many significant digits, rounded up or down; exact where it is that short."""
-    q = Fraction(x)
-    rounding = ROUND_CEILING if up else ROUND_FLOOR
-    top, bottom = abs(q.numerator), q.denominator
-    if max(top.bit_length(), bottom.bit_length()) > 3 * LONGEST:  # leading digits are enough, taken to the same side
-        shift = min(top.bit_length(), bottom.bit_length()) - 200
-        grown = (up and q > 0) or (not up and q < 0)
-        top, bottom = (-(-top >> shift), bottom >> shift) if grown else (top >> shift, -(-bottom >> shift))
-        q = Fraction(top if q > 0 else -top, bottom)
-    context = Context(prec=digits, rounding=rounding, Emin=-(10**9), Emax=10**9)
-    wide = Context(prec=max(60, LONGEST), rounding=rounding, Emin=-(10**9), Emax=10**9)
-    exact = wide.divide(Decimal(q.numerator), Decimal(q.denominator))
-    return tidy(context.plus(exact))
-
-
-def tidy(d: Decimal) -> str:
-    """Plain digits from 1e-5 to 1e7, an exponent beyond; no trailing zeros."""
-    if not d:
-        return "0"
-    exponent = d.adjusted()
-    if -5 <= exponent < 7:
-        text = f"{d:f}"
-        return text.rstrip("0").rstrip(".") if "." in text else text
-    digits = "".join(map(str, d.as_tuple().digits)).rstrip("0")
-    head = digits[0] + (f".{digits[1:]}" if len(digits) > 1 else "")
-    return f"{'-' if d < 0 else ''}{head}e{exponent}"
+    return (decimal_up if up else decimal_down)(exact(x), digits)
 
 
 def upper(value: dict[str, str | None] | None) -> str | None:
@@ -149,14 +129,14 @@ def _margin(
         radius = results["radius"]
         if radius is None or radius["lower"] is None or value["upper"] is None:
             return None
-        far = Fraction(radius["lower"])
-        return far - Fraction(value["upper"]), far
+        far = exact(radius["lower"])
+        return far - exact(value["upper"]), far
     if r.kind in ("always", "throughout"):
         end = value["lower"] if above else value["upper"]
-        return None if end is None else ((Fraction(end) if above else -Fraction(end)), Fraction(0))
+        return None if end is None else ((exact(end) if above else -exact(end)), Fraction(0))
     if r.constant is None:
         return None
     low, high = constant(r.constant, claim.values)
     if above:
-        return None if value["lower"] is None else (Fraction(value["lower"]) - high, high)
-    return None if value["upper"] is None else (low - Fraction(value["upper"]), low)
+        return None if value["lower"] is None else (exact(value["lower"]) - high, high)
+    return None if value["upper"] is None else (low - exact(value["upper"]), low)

@@ -3,13 +3,12 @@
 from __future__ import annotations
 
 from collections.abc import Mapping
-from fractions import Fraction
 from typing import Any
 
 from .accepted import Accepted
 from .document import Block, Code, Outline, said
+from .margins import exact, signed
 from .margins import rounded as figures
-from .margins import signed
 
 PAGES = {
     "range": ("forms.md", "every box of a tree that covers the domain is enclosed in outward-rounded arithmetic"),
@@ -139,4 +138,4 @@ def place(at: Mapping[str, str]) -> str:
 
 def _near(x: str) -> str:
     down, up = figures(x, False, 5), figures(x, True, 5)
-    return signed(min(down, up, key=lambda t: abs(Fraction(t) - Fraction(x))))
+    return signed(min(down, up, key=lambda t: abs(exact(t) - exact(x))))

@@ -9,7 +9,7 @@ from typing import Any
 from .accepted import Accepted
 from .document import Text
 from .formula import Formula, equation, op, row, symbol
-from .margins import lower, rounded, upper
+from .margins import exact, lower, rounded, upper
 
 LEAST = Fraction(1, 1000)  # per cent that is worth telling
 Value = dict[str, str | None] | None
@@ -80,7 +80,7 @@ def gap(value: Any, large: bool = False) -> str:
     """How much worse the proved end may be than what is surely reached, as a share of the latter."""
     if value is None or value["lower"] is None or value["upper"] is None:
         return "unknown"
-    low, high = Fraction(value["lower"]), Fraction(value["upper"])
+    low, high = exact(value["lower"]), exact(value["upper"])
     at = abs(high if large else low)
     if low >= high:
         return "nothing"

@@ -13,7 +13,7 @@ from .document import Block, Caution, Code, Document, Items, Section, Table, Tex
 from .drawn import Drawings, drawings
 from .figures import HOW
 from .formula import symbol
-from .margins import Judged, judged, lower, rounded, signed, upper, with_unit
+from .margins import Judged, exact, judged, lower, rounded, signed, upper, with_unit
 from .outlines import kind, outline, place
 from .quantities import quantities
 from .standards import MODEL, NEITHER, cautions
@@ -121,7 +121,7 @@ def _limits(found: Accepted, cells: list[Cell], drawn: Drawings) -> list[Block]:
     pair = results["routes"].get(results["route"]) or results
     k, rest, bound = (upper(pair[q]) for q in ("gain", "residual", "bound"))
     if "stances" not in results and k is not None and rest is not None and bound is not None:
-        left = 1 - Fraction(pair["gain"]["upper"])  # above 0 where there is a bound
+        left = 1 - exact(pair["gain"]["upper"])  # above 0 where there is a bound
         lessened = 1 - left / (1 - (1 - left) * Fraction(9, 10))
         blocks.append(
             said(
@@ -195,7 +195,7 @@ def _worst(found: Accepted) -> list[Block]:
             "split-residual",
             "require",
         ):
-            end = min((line["concludes"]["lower"], line["concludes"]["upper"]), key=lambda x: abs(Fraction(x)))
+            end = min((line["concludes"]["lower"], line["concludes"]["upper"]), key=lambda x: abs(exact(x)))
             rows.append(
                 (
                     _named(found.claim, line["proves"]),

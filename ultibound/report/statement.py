@@ -8,7 +8,7 @@ from functools import partial as partial_
 
 from ..claim import Claim
 from ..claim.errors import Bad
-from ..claim.model import Quantity, Requirement, Stance
+from ..claim.model import Dynamics, Quantity, Requirement, Stance
 from ..claim.obligations import Domain, Obligation, Obligations
 from ..claim.provable import not_yet, of_stance
 from .document import Block, Code, Display, Document, Items, Listing, Paragraph, Section, Table, Text, said
@@ -118,8 +118,7 @@ def _map(claim: Claim, stance: Stance) -> list[Block]:
     blocks: list[Block] = []
     d = stance.dynamics
     if d is not None:
-        duration: Formula = words("touchdown by a condition") if d.duration is None else written(d.duration)
-        blocks.append(said("From one touchdown to the next the stance lasts ", duration, " s. Just after touchdown"))
+        blocks.append(said(*_lasting(d), " Just after touchdown"))
         blocks += [Display(equation(start(x), "=", written(e))) for x, e in d.start.items()]
         blocks.append(said("and within the stance, the time t since touchdown in seconds,"))
         blocks += [Display(equation(Formula("dot", (symbol(x),), "."), "=", written(e))) for x, e in d.rate.items()]
@@ -145,6 +144,15 @@ def _map(claim: Claim, stance: Stance) -> list[Block]:
     if claim.horizon > 1:
         blocks.append(said(f"{claim.horizon} steps are taken together as one map."))
     return blocks
+
+
+def _lasting(d: Dynamics) -> Text:
+    """From one touchdown to the next: a duration, or the condition that ends the stance."""
+    if d.duration is not None or d.until is None or d.within is None:
+        known: Formula | str = "?" if d.duration is None else written(d.duration)
+        return ("From one touchdown to the next the stance lasts ", known, " s.")
+    window = interval(written(d.within.lower), written(d.within.upper))
+    return ("The next touchdown is when ", written(d.until), " first falls to 0 within ", window, " s.")
 
 
 def _linearisation(claim: Claim, stance: Stance) -> list[Block]:

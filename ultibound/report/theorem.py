@@ -46,44 +46,28 @@ def theorem(found: Accepted) -> list[Block]:
     pair = results["routes"].get(results["route"]) or results
     k, rest, bound = upper(pair["gain"]), upper(pair["residual"]), upper(pair["bound"])
     many = claim.horizon
-    every = f" of {many} steps taken together" if many > 1 else ""
+    sized = "in the norm stated below, " if several else f"in {unit}, " if unit else ""
+    kept = "the state stays in S, and"
+    if many > 1:
+        kept = f"the state is in S again after every {many} steps, in the region at all of them, and over such a round"
     blocks: list[Block] = [
         said(
-            "Let e be the error, the state less its target, ",
-            "in the norm stated below, " if several else "",
-            "and S ",
-            _set(results, unit),
-            ". For every start in S and every course of the uncertain quantities within their ranges the state stays "
-            "in S, and",
+            f"Let e be the error, the state less its target, {sized}and S {_set(results, unit)}. For every start in S "
+            "and "
+            f"every course of the uncertain quantities within their ranges {kept}"
         )
     ]
-    if many > 1:
-        blocks[0] = said(
-            "Let e be the error, the state less its target, ",
-            "in the norm stated below, " if several else "",
-            "and S ",
-            _set(results, unit),
-            ". For every start in S and every course of the uncertain quantities within their ranges the state is in "
-            f"S again after every {many} steps, in the region at all of them, and from one such step to the next",
-        )
     if k is not None and rest is not None:
         one = equation(bars(symbol("e", "+"), several), "≤", plus(product(K, bars(symbol("e"), several)), EPS))
-        blocks.append(
-            Display(
-                equation(
-                    one, ",", equation(K, "=", figure(k)), ",", equation(EPS, "=", figure(rest)), words(f" {unit}")
-                )
-            )
-        )
+        blocks.append(Display(equation(one, ",", equation(K, "=", figure(k)), ",", equation(EPS, "=", figure(rest)))))
     if k is not None and rest is not None and bound is not None:
         geometric = fraction(minus(number(1), power(K, N)), minus(number(1), K))
-        blocks.append(said(f"so that after n rounds{every}" if many > 1 else "so that after n steps"))
-        envelope = plus(product(power(K, N), bars(E0, several)), product(EPS, geometric))
-        blocks.append(Display(equation(norm, "≤", envelope)))
-        blocks.append(said("and in the long run, uniformly over all of them,"))
-        limit = equation(
-            call("limsup", norm), "≤", fraction(EPS, minus(number(1), K)), "≤", figure(bound), words(f" {unit}")
+        blocks.append(said(f"so that after n {'rounds' if many > 1 else 'steps'}"))
+        blocks.append(
+            Display(equation(norm, "≤", plus(product(power(K, N), bars(E0, several)), product(EPS, geometric))))
         )
+        blocks.append(said("and in the long run, uniformly over all starts and courses,"))
+        limit = equation(call("limsup", norm), "≤", fraction(EPS, minus(number(1), K)), "≤", figure(bound))
         blocks.append(Display(limit))
     blocks.append(said(f"This is by the route {results['route']}: {ROUTES[results['route']]}."))
     if several:

@@ -112,7 +112,7 @@ def plain(f: Formula) -> str:
     parts = f.parts
     match f.kind:
         case "symbol":
-            sub = f"_{f.sub.replace(', ', '_').replace(' ', '')}" if f.sub else ""
+            sub = f.sub if f.sub.isdigit() or not f.sub else f"_{f.sub.replace(', ', '_').replace(' ', '')}"
             return f.text + sub + {"+": "⁺", "*": "*"}.get(f.sup, f"^{f.sup}" if f.sup else "")
         case "number" | "operator" | "words" | "code":
             return visible(f.text)

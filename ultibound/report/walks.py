@@ -9,7 +9,6 @@ from __future__ import annotations
 
 from collections.abc import Mapping, Sequence
 from dataclasses import dataclass
-from fractions import Fraction
 from itertools import product
 from typing import Any
 
@@ -25,15 +24,16 @@ from ..contraction.samples import combinations, ends_of, values_of
 from ..polynomial.flows import Errors, FlowTable
 from ..stepmap.symbolic import compiled
 from .accepted import Accepted
+from .margins import exact
 
 STEPS, LATE, SEED, MOST_CHOICES, DIRECTIONS = 30, 20, 0, 48, 8
 
 
 def flow_table(witness: Mapping[str, Any], motion: Motion) -> FlowTable:
     """The trial solutions of a `trajectory` line as a table without errors: values at points are estimates."""
-    cuts = [np.array([to_float(Fraction(x)) for x in witness["cuts"][p.name]]) for p in motion.parameters]
+    cuts = [np.array([to_float(exact(x)) for x in witness["cuts"][p.name]]) for p in motion.parameters]
     grids = [None if p.grid is None else np.array([to_float(x) for x in p.grid]) for p in motion.parameters]
-    pieces = np.array([to_float(Fraction(x)) for x in witness["pieces"]])
+    pieces = np.array([to_float(exact(x)) for x in witness["pieces"]])
     whole = np.array([[[float(x) for x in piece.split()] for piece in cell] for cell in witness["cells"]])
     n, (time, total) = len(motion.states), witness["degrees"]
     columns = n + len(motion.signals) + any(k is not None for k in motion.free)
@@ -246,8 +246,8 @@ def rows_of(metric: Mapping[str, Any] | None, states: Sequence[str]) -> tuple[Fl
     """V of a box or polytope ‖Ve‖∞; of an ellipsoid a V with P = VᵀV, and P."""
     if metric is None or metric["kind"] == "box":
         weights = metric["weights"] if metric is not None else {}
-        return np.diag([to_float(Fraction(weights.get(s, "1"))) for s in states]), None
-    matrix = np.array([[to_float(Fraction(x)) for x in row] for row in metric["matrix"]])
+        return np.diag([to_float(exact(weights.get(s, "1"))) for s in states]), None
+    matrix = np.array([[to_float(exact(x)) for x in row] for row in metric["matrix"]])
     if metric["kind"] == "polytope":
         return matrix, None
     return np.linalg.cholesky(matrix).T, matrix

@@ -51,6 +51,8 @@ def _written(certificate: Path, target: Path, made: Callable[[Accepted], bytes])
     data = contents(str(certificate))
     if target.is_dir():
         raise IsADirectoryError(21, "is a directory; name a file", str(target))
+    if not target.parent.is_dir():  # said before anything is worked out
+        raise FileNotFoundError(2, "No such folder", str(target.parent))
     if target.exists() and target.samefile(certificate):
         raise FileExistsError(17, "is the certificate itself; name another file", str(target))
     write_whole(target, made(accepted(data)))
