@@ -12,6 +12,7 @@ from .margins import rounded as figures
 
 PAGES = {
     "range": ("forms.md", "every box of a tree that covers the domain is enclosed in outward-rounded arithmetic"),
+    "squares": ("squares.md", "a polynomial near it, less its end, is exactly a weighted sum of squares, box by box"),
     "point": ("attained.md", "the value at one exact point is enclosed: it is surely taken"),
     "trajectory": (
         "trajectory.md",
@@ -117,7 +118,7 @@ def shown(line: Mapping[str, Any]) -> str:
     ends = line["concludes"]
     if not ends:
         return "holds"
-    if line["rule"] == "range":
+    if line["rule"] in ("range", "squares") and {"lower", "upper"} <= set(ends):
         return f"within [{rounded(ends['lower'], False)}, {rounded(ends['upper'], True)}]"
     if line["rule"] == "point":
         return f"a value within [{rounded(ends['lower'], False)}, {rounded(ends['upper'], True)}] is taken"
