@@ -354,7 +354,9 @@ def test_the_command_shows_every_stance() -> None:
     from ultibound.report.terminal import outcome
 
     text = graph(
-        {"a": ("b", "[-1, 1]", "0", "x/2 + 0.01*w"), "b": ("a", "[-1, 1]", "0", "x/3")}, "settles", '"settles"\nin = "a"'
+        {"a": ("b", "[-1, 1]", "0", "x/2 + 0.01*w"), "b": ("a", "[-1, 1]", "0", "x/3")},
+        "settles",
+        '"settles"\nin = "a"',
     )
     console = Console(record=True, width=120, file=StringIO())
     console.print(outcome(parse_claim(text, {}, {}, "claim.toml"), proved(text).results))

@@ -23,6 +23,7 @@ from tests.conftest import proved
 from ultibound.certificate.certificate import Certificate
 from ultibound.checker import check
 from ultibound.checker.document import digest
+from ultibound.checker.rules import SHAPES
 from ultibound.report import figures
 from ultibound.report.accepted import Accepted, NotAccepted, accepted, accepted_here
 from ultibound.report.bundle import bundle, claim_name
@@ -34,6 +35,7 @@ from ultibound.report.inert import markdown as escaped
 from ultibound.report.latex import latex
 from ultibound.report.margins import exact, judged, rounded
 from ultibound.report.markdown import markdown
+from ultibound.report.outlines import PAGES
 from ultibound.report.plain import plain
 from ultibound.report.reporting import report
 from ultibound.report.standards import NEITHER, STANDARDS
@@ -146,6 +148,12 @@ def test_everyone_finds_their_part(document: Document, pendulum: Accepted) -> No
         )
     for number, line in enumerate(pendulum.proof, 1):
         assert f"{number}. {line['proves']}:" in text
+
+
+def test_every_rule_is_said_in_words_and_has_its_page() -> None:
+    assert set(SHAPES) == set(PAGES)
+    proofs = Path(__file__).parents[2] / "proofs"
+    assert all((proofs / page).is_file() and how for page, how in PAGES.values())
 
 
 def test_the_standards_are_those_named() -> None:

@@ -83,7 +83,9 @@ def kind(proves: str) -> str:
 def outline(found: Accepted) -> list[Block]:
     """Groups of lines in the order of the proof; opened by keyboard or mouse."""
     blocks: list[Block] = []
-    for title, kinds in GROUPS:
+    known = {k for _, kinds in GROUPS for k in kinds}
+    other = tuple({kind(x["proves"]) for x in found.proof} - known)
+    for title, kinds in (*GROUPS, ("Other lines", other)):
         lines = [(n, x) for n, x in enumerate(found.proof, 1) if kind(x["proves"]) in kinds]
         if lines:
             count = f"{len(lines)} line{'s' if len(lines) > 1 else ''}"
