@@ -209,7 +209,12 @@ def test_figures_are_labelled_with_units_and_hold_no_date(document: Document) ->
     assert "distance from the target ρ (m/s)" in page and "step n (1)" in page and "error (m/s)" in page
     assert "<dc:date" not in page and "matplotlib" not in page and "<!DOCTYPE svg" not in page
     ids = [a["id"] for _, a in Page(html(document)).met if "id" in a]
-    assert len(set(ids)) == len(ids) and all(f'"{x}"' in page or f"#{x}" in page for x in ids)
+    assert len(set(ids)) == len(ids)
+    referred = set(re.findall(r'(?:href="|url\()#(f[0-9a-f]{8}-[\w.-]+)', page))
+    assert len(referred) > 5 and referred <= set(ids)
+    drawn = [a.get("style") or "" for t, a in Page(html(document)).met if t == "path"]
+    colours = {c for s in drawn for c in re.findall(r"(?:fill|stroke): (#[^;]*)", s)}
+    assert "#ffffff" in colours and all(re.fullmatch("#[0-9a-f]{6}", c) for c in colours)
 
 
 def test_figures_on_an_axis_that_is_given(pendulum: Accepted) -> None:

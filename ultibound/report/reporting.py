@@ -162,7 +162,7 @@ def _limits(found: Accepted, cells: list[Cell], drawn: Drawings) -> list[Block]:
     blocks += _gain_intervals(results)
     blocks += drawn.of("over-gain", "sensitivity")
     if len(cells) > 1:
-        blocks.append(_cells(cells, unit))
+        blocks.append(_cells(cells, unit, {n: q.unit for n, q in (*states.items(), *claim.uncertain.items())}))
         blocks.append(
             said(
                 "By interpolation: an estimate, not "
@@ -236,14 +236,18 @@ def _gain_intervals(results: dict[str, Any]) -> list[Block]:
     return [Table(("Gain intervals",), head, tuple(rows))]
 
 
-def _cells(cells: list[Cell], unit: str) -> Table:
+def _cells(cells: list[Cell], unit: str, units: dict[str, str]) -> Table:
     ordered = sorted(cells, key=lambda c: -c.residual)
     rows = []
     for c in ordered[:MOST_CELLS]:
         ends = [(f"{rounded(a, False, 4)} to {rounded(b, True, 4)}",) for a, b in c.ends.values()]
         rows.append((*ends, (f"≤ {rounded(c.residual, True, 5)}",), (f"{c.interpolated:.2g}",)))
-    of = f" {unit}" if unit else ""
-    head: tuple[Text, ...] = (*((symbol(n),) for n in cells[0].ends), (f"residual{of}",), (f"by interpolation{of}",))
+    of = f" ({unit})" if unit else ""
+    head: tuple[Text, ...] = (
+        *((symbol(n), f" ({units[n]})" if units.get(n) else "") for n in cells[0].ends),
+        (f"residual{of}",),
+        (f"by interpolation{of}",),
+    )
     more: Text = (f"The {MOST_CELLS} largest of {len(cells)}.",) if len(cells) > MOST_CELLS else ()
     return Table(("Proved residual by library cell",), head, tuple(rows), "l" * len(cells[0].ends) + "rr", more)
 

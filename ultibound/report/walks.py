@@ -170,10 +170,10 @@ def _slope(m: PointMap) -> Floats:
 
 
 def _ways(states: int, reach: Floats, rng: np.random.Generator) -> Floats:
-    """Directions: each state up and down, and of several states some between."""
+    """Directions: each state up and down; then some that start at the target, of several states between the others."""
     each = np.concatenate([np.eye(states), -np.eye(states)])
     if states == 1:
-        return each
+        return np.concatenate([each, each / 2])
     more = rng.standard_normal((DIRECTIONS, states))
     return np.concatenate([each, 0.99 * more / np.abs(more).max(axis=1, keepdims=True)])
 
