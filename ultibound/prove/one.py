@@ -262,9 +262,13 @@ class Attempt:
         side = 1 if self.claim.requirements[number - 1].relation in ("<", "<=") else -1
         few = min(FIRST + 8 * prod(len(v.cells) for v in obligation.variables), self.claim.cells)
         found = self.ranges.search(obligation, False, DECIDED, side=side, cells=few)
-        if found.stopped == "cells" and self._squared(number, on, {"upper" if side > 0 else "lower": 0.0}):
-            self.ranges.enclose(obligation, on, points=points, gap=DECIDED, side=side, cells=min(UNASKED, few))
-            return
+        if found.stopped == "cells":
+            breaking, shown = self._squared(number, on, {"upper" if side > 0 else "lower": 0.0})
+            if breaking and points:
+                self.ranges.point(obligation, breaking, on)
+            if breaking or shown:
+                self.ranges.enclose(obligation, on, points=points, gap=DECIDED, side=side, cells=min(UNASKED, few))
+                return
         if found.stopped == "cells" and few < self.claim.cells:
             found = self.ranges.search(obligation, False, DECIDED, side=side)
         if min(found.upper * side, found.lower * side) < 0 or (found.upper if side > 0 else -found.lower) < 0:
@@ -272,21 +276,24 @@ class Attempt:
         else:
             self.ranges.enclose(obligation, on, points=points)
 
-    def _squared(self, number: int, on: int, enough: dict[str, float]) -> bool:
+    def _squared(self, number: int, on: int, enough: dict[str, float]) -> tuple[dict[str, Fraction], bool]:
         """Ends of a requirement by sums of squares, which use nothing of its range: proofs/squares.md.
 
-        Whether they are enough.
+        A point that seems to break it, and whether they are enough.
         """
         name = f"require[{number}]"
         asked = Asked(name, on, enough, SQUARED_GAP, self.until - self.ranges.spent, self.watch)
+        search = Squares(self.writer, asked)
         try:
-            line, why = Squares(self.writer, asked).line()
+            line, why = search.line()
         except KeyboardInterrupt:
             self.ranges.interrupt()
-            return False
+            return {}, False
         self.ranges.limits[f"squares of {name}"] = why
         shown = {} if line is None else self.writer.proof.lines[line].concludes
-        return bool(shown) and all(x >= enough[n] if n == "lower" else x <= enough[n] for n, x in shown.items())
+        return search.breaking, bool(shown) and all(
+            x >= enough[n] if n == "lower" else x <= enough[n] for n, x in shown.items()
+        )
 
     def _over(self, number: int) -> None:
         """A requirement over ranges of its own: a proof of the same kind, whose lines are taken in."""
