@@ -158,20 +158,27 @@ class Case:
             assert verdict.leaves == self.leaves, verdict
 
 
-CASES: dict[str, Question] = {}
+class Questions(dict[str, Question]):
+    """Questions to a checker, each name once."""
+
+    def add(self, name: str, question: Question) -> None:
+        assert name not in self, name
+        self[name] = question
+
+    def unit(self, question: Question) -> Question:
+        """Registers assertions about functions of the checker."""
+        self.add(question.__name__, question)
+        return question
+
+    def accept(self, name: str, entries: Entries, leaves: int | None = None) -> None:
+        self.add(name, Case(sealed(entries), "valid", leaves=leaves))
+
+    def reject(self, name: str, entries: Entries, place: str, reason: str) -> None:
+        self.add(name, Case(sealed(entries), "invalid", place, reason))
 
 
-def add(name: str, question: Question) -> None:
-    assert name not in CASES, name
-    CASES[name] = question
-
-
-def accept(name: str, entries: Entries, leaves: int | None = None) -> None:
-    add(name, Case(sealed(entries), "valid", leaves=leaves))
-
-
-def reject(name: str, entries: Entries, place: str, reason: str) -> None:
-    add(name, Case(sealed(entries), "invalid", place, reason))
+CASES = Questions()
+unit, accept, reject = CASES.unit, CASES.accept, CASES.reject
 
 
 def but(entries: Entries, *changes: Any) -> Entries:
@@ -195,12 +202,6 @@ class _Gone:
 
 
 GONE = _Gone()
-
-
-def unit(question: Question) -> Question:
-    """Registers assertions about functions of the checker."""
-    add(question.__name__, question)
-    return question
 
 
 def verdicts(
@@ -2344,16 +2345,16 @@ def files() -> None:
             reject(f"made with {str(made)[-14:]+str(len(str(made)))}", but(BASE, "made_with", made), "made_with", "names and versions")
     for assumed in ([""], {}, None, "", [[]]):
         reject(f"assumptions {assumed}", but(BASE, "assumptions", assumed), "assumptions", "none are known")
-    add("another digest", Case(canonical({**BASE, "digest": "0" * 64}), "invalid", "digest", "the digest does not match"))
+    CASES.add("another digest", Case(canonical({**BASE, "digest": "0" * 64}), "invalid", "digest", "the digest does not match"))
     damaged = canonical({**BASE, "digest": digest(BASE), "made_with": {"a": "b"}})
-    add("a digest of something else", Case(damaged, "invalid", "digest", "the digest does not match"))
+    CASES.add("a digest of something else", Case(damaged, "invalid", "digest", "the digest does not match"))
 
 
 files()
 
 
 def unreadable(name: str, data: bytes, reason: str) -> None:
-    add(name, Case(data, "unreadable", "", reason))
+    CASES.add(name, Case(data, "unreadable", "", reason))
 
 
 def texts() -> None:
@@ -2384,7 +2385,7 @@ def texts() -> None:
             lone_text = f'{{"x":{{"\\u{code:04x}":1}}}}' if where == "key" else f'{{"x":"\\u{code:04x}"}}'
             unreadable(f"{where} with {code:x}", lone_text.encode(), "a lone surrogate" if lone else "entries missing or unknown")
     not_canonical = json.dumps({**BASE, "digest": digest(BASE)}, indent=1).encode()
-    add("another spelling of the same", Case(not_canonical, "valid"))
+    CASES.add("another spelling of the same", Case(not_canonical, "valid"))
 
 
 texts()

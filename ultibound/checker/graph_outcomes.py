@@ -93,12 +93,7 @@ class StepResults(Results):
     def stretched(self, proves: str) -> Fraction | None:
         """The largest norm surely taken."""
         lines = self.lines("stretch", proves) if self.before.lasting else []
-        found = [(x.concludes["lower"], n) for n, x in lines if x.domain == self.before.domain]
-        if not found:
-            return None
-        lower, number = max(found)
-        self.needed.add(number)
-        return max(lower, Fraction(0))
+        return self.surely((x.concludes["lower"], n) for n, x in lines if x.domain == self.before.domain)
 
 
 class GraphResults(Results):

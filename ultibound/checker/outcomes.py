@@ -92,11 +92,7 @@ class SeveralResults(Results):
     def stretched(self, proves: str) -> Fraction | None:
         """The largest norm surely taken."""
         lines = self.lines("stretch", proves) if self.lasting else []
-        found = [(x.concludes["lower"], n) for n, x in lines if x.domain == self.domain]
-        if not found:
-            return None
-        self.needed.add(max(found)[1])
-        return max(max(found)[0], Fraction(0))
+        return self.surely((x.concludes["lower"], n) for n, x in lines if x.domain == self.domain)
 
     def grown(self) -> tuple[Fraction | None, bool]:
         """proofs/several.md (7): the gain that a product of Jacobians shows in any norm, and whether in any set too."""
@@ -140,11 +136,7 @@ class SeveralResults(Results):
     def farthest(self, s: str) -> Fraction | None:
         """How far a periodic orbit surely takes a state, again and again: proofs/several.md (6)."""
         lines = self.lines("periodic", "periodic") if self.lasting else []
-        found = [(line.concludes[s], n) for n, line in lines]
-        if not found:
-            return None
-        self.needed.add(max(found)[1])
-        return max(max(found)[0], Fraction(0))
+        return self.surely((line.concludes[s], n) for n, line in lines)
 
     def within(self) -> Fraction | None:
         """The least bound in the metric's norm."""

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+from collections.abc import Iterable
 from dataclasses import dataclass, replace
 from fractions import Fraction
 from typing import Any
@@ -289,6 +290,14 @@ class Results:
             self.needed.add(n)
             return line
         return None
+
+    def surely(self, found: Iterable[tuple[Fraction, int]]) -> Fraction | None:
+        """The largest of the sizes that lines show to be taken, by line; no size is below 0."""
+        largest = max(found, default=None)
+        if largest is None:
+            return None
+        self.needed.add(largest[1])
+        return max(largest[0], Fraction(0))
 
     def attained(self, proves: str) -> Span:
         """The largest value surely taken (upper) and the smallest (lower), by point lines."""
