@@ -273,5 +273,5 @@ def test_every_rule_has_its_page_and_every_page_is_listed() -> None:
     listed = {p for p in PROOFS.glob("*.md") if f"`{p.name}`" in table or p.name in ("obligations.md", "README.md")}
     assert listed == set(PROOFS.glob("*.md"))
     checker = "".join(p.read_text(encoding="utf-8") for p in (PROOFS.parent / "ultibound" / "checker").glob("*.py"))
-    for page in PROOFS.glob("*.md"):
+    for page in set(PROOFS.glob("*.md")) - {PROOFS / "README.md"}:
         assert f"proofs/{page.name}" in checker, page.name
