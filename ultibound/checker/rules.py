@@ -34,6 +34,7 @@ SHAPES: dict[str, tuple[tuple[str, ...], tuple[str, ...] | None]] = {
     "course": ((), ()),
     "slope": ((), ("gain", "residual")),
     "split": ((), ("gain", "residual")),
+    "sector": ((), ("gain", "residual")),
     "shells": (("radii", "slope"), ()),
     "trajectory": (("bits", "cells", "cuts", "degrees", "pieces"), ("error",)),
     "curve": ((), ("gain", "residual", "sharp")),
@@ -151,7 +152,7 @@ class Proof:
                 raise Rejected("uses: the one line that gives the set")
             domain = used[0].domain
         meaning = d.meaning(proves, domain)
-        if used and proves.startswith(("target", "image")):
+        if used and proves.startswith(("target", "image", "sector-start")):
             raise Rejected("uses: this obligation rests on no set")
         precision = arithmetic(witness["bits"])
         names = [v.name for v in meaning.variables]

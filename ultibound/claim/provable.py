@@ -62,8 +62,8 @@ def not_yet(claim: Claim) -> str | None:
         return "horizon: a signal within the stance is followed for one step at a time only; remove the key"
     if claim.horizon > 1 and any(q.change is not None and q.values is not None for q in claim.uncertain.values()):
         return "horizon: a held quantity of a finite list that changes is followed for one step at a time only, yet"
-    if claim.route == "sector":
-        return "route: sector cannot be proved yet; use slope, split, curve or best"
+    if claim.route == "sector" and (why := _no_sector(claim)) is not None:
+        return f"route: sector {why}"
     if claim.route == "split" and not claim.correction:
         return "route: split tells a correction apart; name it in `correction`, or use another route"
     for name, w in claim.weights.items() if several else ():
@@ -90,6 +90,19 @@ def not_yet(claim: Claim) -> str | None:
         if unfollowed:
             why = "it also sets an exponent, the end of a range or the bound asked for, which is taken at its value"
             return f"require[{number}]: {unfollowed[0]} cannot be followed: {why}; use --set for each value"
+    return None
+
+
+def _no_sector(claim: Claim) -> str | None:
+    """Why a claim of one state does not have the route sector; None where it does."""
+    if len(claim.correction) != 1:
+        return "follows one correction; name exactly one in `correction`, or use another route"
+    if claim.horizon > 1:
+        return "is known for one step at a time only; remove the horizon, or use another route"
+    try:
+        Obligations(claim).sector(Domain("region", Fraction(0), (Fraction(0), Fraction(0))))
+    except Bad as problem:
+        return f"is not known here: {problem}"
     return None
 
 

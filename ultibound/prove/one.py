@@ -21,6 +21,7 @@ from ..checker.flows import Flows
 from ..checker.graph_outcomes import results_of
 from ..checker.reals import Undefined
 from ..checker.rules import Rejected
+from ..checker.sector import applies
 from ..checker.theorems import levels, movement, sharpest
 from ..claim import Bad, Claim, ClaimError
 from ..claim.constants import constant
@@ -38,6 +39,8 @@ DECIDED = 0.5  # gap at which the sign of what is not near zero is known
 ACCURACY = 4e-12  # of the trial trajectories, relative to the largest of them
 PADDING = 1e-3  # what a library axis may take beyond what the search found
 TARGET_GAP = 1e-8  # suprema are taken over a ball larger by as much: proofs/invariant-set.md (4)
+LEAST_SHARE = 1e-3  # of the gap, for a factor of the sector route that nearly cancels
+ROUGHER = 10  # the gap of that route's residual, where another is reported, over that of the others
 SPARE = 0.01  # share of a smaller ball's radius left free
 MOST_ROUGH = 300  # cells of a library over which no curve is followed unless one is asked for
 ROUGH, QUICK, FEW, MOST = 3e-2, 8, 1, 60  # gap, leaves a shell and shells of a rough curve; shells of a sharp one
@@ -148,6 +151,7 @@ class Attempt:
         if not lost:
             self._slope(domain, on, moves)
             self._split(domain, on, moves)
+            self._sector(domain, on, moves)
         if radius > 0:
             self._curve(domain, on, moves, lost)
         invariant = region or self._invariant_ball(ball)
@@ -331,6 +335,35 @@ class Attempt:
             kept = self.ranges.enclose(of_kept, on, magnitude=True, floor=floor)
             self._pair("split", slope, kept, moves)
             self._courses("split", slope, domain, on)
+
+    def _sector(self, domain: Domain, on: int, moves: list[Proved] | None) -> None:
+        """Gain and residual of the sector route, where exactly one correction is named: proofs/sector.md."""
+        if moves is None or not applies(self.writer.derivation.statement):
+            return
+        try:
+            obligations = self.obligations.sector(domain)
+        except Bad as why:
+            self.ranges.limits["sector"] = str(why)
+            return
+        *bands, start, kept = obligations
+        # 1 + c m may be small where c m is near -1: its gap, not that of c or m, is what counts
+        (c0, c1), (m0, m1) = ((x.lower, x.upper) for x in (self.ranges.search(b, False, COARSE) for b in bands))
+        products = [c * m for c in (c0, c1) for m in (m0, m1)]
+        size = max(abs(p) for p in products)
+        share = min(1.0, max(abs(1 + p) for p in products) / size) if size > 0 else 1.0
+        gap = max(self.gap * max(share, LEAST_SHARE) / 2, FINEST)
+        found = [self.ranges.enclose(b, on, gap=gap) for b in bands]
+        found.append(self.ranges.enclose(start, None, magnitude=True))
+        rough = self.gap * (1 if self.claim.route == "sector" else ROUGHER)
+        found.append(self.ranges.enclose(kept, on, magnitude=True, gap=rough, floor=rough * self.moved))
+        known = [x for x in found if x is not None]
+        if len(known) == len(found):
+            sensitivity, slope, begun, residual = known
+            k = max(abs(1 + c * m) for c in (sensitivity.lower, sensitivity.upper) for m in (slope.lower, slope.upper))
+            rest = residual.size + sensitivity.size * begun.size + self._moved(moves)
+            uses = [p.line for p in (*known, *moves)]
+            concludes = {"gain": upward(k), "residual": upward(rest)}
+            self.pairs["sector"] = self.writer.theorem("sector", "sector", uses, concludes)
 
     def _courses(self, route: str, slope: Proved | None, domain: Domain, on: int) -> None:
         """Slopes under signals of any course, where constant ones do not tell: proofs/signals.md."""
