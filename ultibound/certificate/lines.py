@@ -128,6 +128,26 @@ class Writer:
         )
         return number
 
+    def squares(self, proves: str, on: int, witness: dict[str, Any], ends: Mapping[str, Fraction]) -> int:
+        """Appends a line of squares whose ends were measured piece by piece; returns its number."""
+        limit = SHORT if witness["bits"] else EXACT
+        concludes = {n: (_down if n == "lower" else _up)(x, limit)[0] for n, x in ends.items()}
+        meaning = self.derivation.meaning(proves, self.domain(on))
+        uses = [on, *self._flow(meaning.root)]
+        line = {
+            "rule": "squares",
+            "proves": self.named(proves),
+            "uses": uses,
+            "witness": witness,
+            "concludes": concludes,
+        }
+        self.raw.append(line)
+        claimed = {n: Fraction(x) for n, x in concludes.items()}
+        self.proof.lines[len(self.raw)] = Line(
+            "squares", proves, tuple(uses), claimed, self.domain(on), meaning.on_set, part=self.part
+        )
+        return len(self.raw)
+
     def flows_of(self, witness: dict[str, Any]) -> Flows:
         """What trial polynomials prove of the flow of the stance; raises checker.rules.Rejected."""
         d = self.derivation
@@ -152,7 +172,7 @@ class Writer:
         met = root is None or any(terms.all[k][0] == "flow" for k in terms.below(root))
         return [self.flow] if met and self.flow is not None else []
 
-    def _flows(self) -> Flows | None:
+    def flows(self) -> Flows | None:
         return None if self.flow is None else self.proof.lines[self.flow].flows
 
     def theorem(self, rule: str, proves: str, uses: list[int], concludes: dict[str, str]) -> int:
@@ -232,7 +252,7 @@ class Writer:
 
         witness |= {"held": spelled(held), "steps": [spelled(w) for w in steps]}
         try:
-            course = Course(d, witness, self._flows())
+            course = Course(d, witness, self.flows())
             texts = [Fraction(t) for t in witness["start"]]
             states = course.follow((texts[0], texts[-1]))
             if rule == "orbit":
@@ -288,7 +308,7 @@ class Writer:
         names = [v.name for v in meaning.variables]
         arithmetic = Scaled(bits) if bits else Exact()
         libraries = self.derivation.statement.libraries
-        terms, flows = self.derivation.terms, self._flows()
+        terms, flows = self.derivation.terms, self.flows()
         return meaning, Evaluator(terms, meaning.root, meaning.by, names, libraries, arithmetic, flows)
 
 

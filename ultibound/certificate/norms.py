@@ -107,7 +107,7 @@ class NormWriter(Writer):
         if domain is None:
             raise ValueError("no set")
         with suppress(Undefined):
-            table = Table(self.derivation, proves, domain, bits, self._flows())
+            table = Table(self.derivation, proves, domain, bits, self.flows())
             for _ in range(2):
                 began = time.monotonic()
                 norm_over(norm, table.leaf([v.cells[0] for v in table.variables], "c"))
@@ -118,7 +118,7 @@ class NormWriter(Writer):
         domain = self.domain(on)
         if domain is None:
             raise ValueError("no set")
-        return list(Table(self.derivation, proves, domain, bits, self._flows()).leaves(list(trees)))
+        return list(Table(self.derivation, proves, domain, bits, self.flows()).leaves(list(trees)))
 
     def matrix(self, proves: str, trees: Sequence[str], bits: int, on: int, leaves: list[Leaf]) -> int:
         """The norm of a matrix over the set, as its leaves show it."""
@@ -178,7 +178,7 @@ class NormWriter(Writer):
         domain, (before, norm) = self.domain(on), self.seen(proves, on)
         if domain is None:
             raise ValueError("no set")
-        table = Table(self.derivation, proves, domain, bits, self._flows())
+        table = Table(self.derivation, proves, domain, bits, self.flows())
         at = {}
         for v in table.variables:
             at[v.name] = spelled(v, point[v.name])
@@ -196,7 +196,7 @@ class NormWriter(Writer):
         domain = self.proof.lines[on].domain
         if domain is None:
             raise ValueError("no set")
-        table = Table(self.derivation, "slopes", domain, bits, self._flows())
+        table = Table(self.derivation, "slopes", domain, bits, self.flows())
         at = [{v.name: spelled(v, p[v.name]) for v in table.variables} for p in points]
         lower = root_of(traced(table, at, power) / len(self.derivation.states), power * len(at))
         if not lower >= wanted:

@@ -60,8 +60,14 @@ class Remarks:
         pursue = False
         if outcome.verdict == "undecided":
             ranged = r.kind in RANGED
-            aside = ("require",) if r.kind == "gain" else ("require", "signal-slope", "split-signal-slope")
-            names = [f"require[{number}]"] if ranged else [n for n in self.search.limits if not n.startswith(aside)]
+            aside = (
+                ("require", "squares")
+                if r.kind == "gain"
+                else ("require", "squares", "signal-slope", "split-signal-slope")
+            )
+            name = f"require[{number}]"
+            names = [n for n in self.search.limits if not n.startswith(aside)]
+            names = [name, f"squares of {name}"] if ranged else names
             parts += [f"{n}: {STOPS.get(x, x)}" for n in names if (x := self.search.limits.get(n, ""))]
             if self.search.interrupted:
                 parts.append("interrupted")

@@ -185,6 +185,27 @@ class Flows:
         found = [self._enclosed(place, i, j, tuple(orders), a) for place in self._places(orders, at, cells)]
         return min(x[0] for x in found), max(x[1] for x in found)
 
+    def stated(
+        self, i: int, j: int, orders: Sequence[int], at: Sequence[Ends], cells: Sequence[range]
+    ) -> tuple[list[tuple[int, Ends]], dict[Exponents, Fraction], Fraction]:
+        """Within one piece of one cell: its polynomial, and how far off it can be (of a derivative likewise).
+
+        Also which arguments it is a polynomial of, each with the middle and half the width that it is normalised by.
+        """
+        if (i, j) not in self.cells[0][0].polynomials or sum(orders) > 2 or orders[0] > 1:
+            raise Undefined("no such entry of the fundamental solution, or no such derivative of it")
+        places = self._places(orders, at, cells)
+        if len(places) > 1:
+            raise Undefined("several pieces of a trajectory are met: no one polynomial is near it")
+        cell, rank, parts = places[0]
+        end = len(parts) < len(orders)
+        (powers_, column), error, factor = self._polynomial(cell, rank, (i, j), tuple(orders), end)
+        scale = factor / (1 << self.system.models.bits)
+        first, last = self.pieces[rank], self.pieces[rank + 1]
+        time = [] if end else [(0, (first + last - 1, last - first))]
+        arguments = [*time, *((k, x) for k, x in enumerate(middles(cell, self.cuts), 1))]
+        return arguments, {e: c * scale for e, c in zip(powers_, column, strict=True)}, error * scale
+
     def _places(self, orders: Sequence[int], at: Sequence[Ends], cells: Sequence[range]) -> list[Place]:
         """Parts of cells and pieces that together cover the intervals: proofs/trajectory.md (6)."""
         jumps = any(orders[1:])

@@ -18,7 +18,7 @@ from .several import ball, gone_through, hull, matrix, moved, movements, numbers
 from .theorems import Line, Quantities, parted, require
 
 MOST_STANCES = 16
-OF_STANCE = ("metric", "range", "point", "trajectory", "largest-ball", "smaller-ball")
+OF_STANCE = ("metric", "range", "point", "squares", "trajectory", "largest-ball", "smaller-ball")
 Vectors = dict[str, list[Fraction]]  # one a stance
 
 

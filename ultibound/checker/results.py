@@ -460,23 +460,36 @@ class Results:
         return None
 
     def ranged(self, number: int, r: Any) -> Outcome:
-        line, taken = self.one("range", f"require[{number}]"), self.attained(f"require[{number}]")
-        if self.partial and line is not None and line.on_set:
-            line = None
+        name = f"require[{number}]"
+        taken = self.attained(name)
+        lines = [x for rule in ("range", "squares") if (x := self.one(rule, name)) is not None]
+        if self.partial:
+            lines = [x for x in lines if not x.on_set]
         if self.partial and not (self.domain is not None and self.domain.ball):
             taken = NOTHING  # the region may hold more than the ball that the requirement is about
-        if line is not None and line.domain != (self.way or self.domain):
-            raise Rejected(f"require[{number}]: over another set than the gain")
-        value = Span(line.concludes["lower"], line.concludes["upper"]) if line is not None else None
-        proved = line is not None and (self.whole or not line.on_set)
+        if any(x.domain != (self.way or self.domain) for x in lines):
+            raise Rejected(f"{name}: over another set than the gain")
+        value, on_set = agreed(name, lines), any(x.on_set for x in lines)
+        proved = bool(lines) and (self.whole or not on_set)
         proved &= self.whole or self.derivation.motion is None  # that the stance lasts is part of the set's proof
         zero = (Fraction(0), Fraction(0)) if r.kind in ("always", "throughout") else None
         c = zero or (constant(r.constant, self.statement.values) if r.constant is not None else None)
         if c is not None:
             proved = proved and value is not None and compared(r.relation, value, c)
-            if opposed(r.relation, taken, c) and not (self.any and (line is None or line.on_set)):
+            if opposed(r.relation, taken, c) and not (self.any and (not lines or on_set)):
                 return Outcome("refuted", value, taken)
         return Outcome("proved" if proved else "undecided", value, taken)
+
+
+def agreed(name: str, lines: list[Line]) -> Span | None:
+    """What two proofs of the same range show together: proofs/squares.md (4)."""
+    if not lines:
+        return None
+    lower = max((x.concludes["lower"] for x in lines if "lower" in x.concludes), default=None)
+    upper = min((x.concludes["upper"] for x in lines if "upper" in x.concludes), default=None)
+    if less(upper, lower):
+        raise Rejected(f"{name}: its two proofs contradict each other")
+    return Span(lower, upper)
 
 
 def verdict(proved: bool, refuted: bool, span: Span | None) -> Outcome:

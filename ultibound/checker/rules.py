@@ -20,6 +20,7 @@ from .numerals import Rejected, quantity
 from .ranges import Evaluator
 from .reals import Undefined
 from .several import concluded
+from .squares import squares
 from .theorems import THEOREMS, Line, parted, shells
 
 __all__ = ["Line", "Proof", "Rejected", "place", "quantity"]
@@ -55,6 +56,7 @@ SHAPES: dict[str, tuple[tuple[str, ...], tuple[str, ...] | None]] = {
     "graph-entries": (("after", "before", "bits", "trees"), None),  # one an entry
     "graph-componentwise": (("b", "p"), None),  # one a state of each stance
     "product": (("bits", "points", "power"), ("lower",)),
+    "squares": (("bits", "order", "pieces", "trees"), None),  # lower, upper, or both
 }
 NAMED = re.compile(r"(?:over\[([1-9][0-9]{0,3})\]:)?(?:([A-Za-z]\w*(?:>[A-Za-z]\w*)?):)?(.*)", re.ASCII | re.DOTALL)
 
@@ -117,7 +119,7 @@ class Proof:
             elif self.graph is None and (about := concluded(d, rule, proves, used, witness, claimed)) is not None:
                 line = replace(about, uses=tuple(uses))
                 self.leaves += about.leaves
-            elif rule in ("range", "point"):
+            elif rule in ("range", "point", "squares"):
                 line = self.enclosed(d, rule, proves, tuple(uses), used, witness, claimed)
             elif rule == "shells":
                 if not isinstance(witness["radii"], list):
@@ -145,7 +147,7 @@ class Proof:
         witness: dict[str, Any],
         claimed: dict[str, Fraction],
     ) -> Line:
-        """Rules range and point: this checker's own enclosure must lie within what is concluded."""
+        """Rules range, point and squares: what this checker finds must lie within what is concluded."""
         domain, (used, flows) = None, parted(used)
         if used:
             if len(used) != 1 or used[0].domain is None:
@@ -154,6 +156,14 @@ class Proof:
         meaning = d.meaning(proves, domain)
         if used and proves.startswith(("target", "image", "sector-start")):
             raise Rejected("uses: this obligation rests on no set")
+        if rule == "squares":
+            if not proves.startswith("require["):
+                raise Rejected("squares: of requirements only")
+            found, pieces = squares(d, meaning, witness, tuple(claimed), flows)
+            self.leaves += pieces
+            if not all(x <= found[n] if n == "lower" else found[n] <= x for n, x in claimed.items()):
+                raise Rejected(f"{proves}: the squares show less than what is concluded")
+            return Line(rule, proves, uses, claimed, domain, meaning.on_set)
         precision = arithmetic(witness["bits"])
         names = [v.name for v in meaning.variables]
         evaluator = Evaluator(d.terms, meaning.root, meaning.by, names, d.statement.libraries, precision, flows)

@@ -15,6 +15,7 @@ from ..certificate.explaining import Explained
 from ..certificate.lines import Writer, downward, upward
 from ..certificate.remarks import Remarks, Search
 from ..certificate.results import assembled
+from ..certificate.squares import Asked, Squares
 from ..checker.derive import Derivation
 from ..checker.derive import varied as statement_varied
 from ..checker.flows import Flows
@@ -45,6 +46,7 @@ SPARE = 0.01  # share of a smaller ball's radius left free
 MOST_ROUGH = 300  # cells of a library over which no curve is followed unless one is asked for
 ROUGH, QUICK, FEW, MOST = 3e-2, 8, 1, 60  # gap, leaves a shell and shells of a rough curve; shells of a sharp one
 PARTS, PARTED = (1, 4), 1.05  # of a stance for signals of any course, and the ratio to constant ones that is enough
+SQUARED_GAP = 1e-3  # of sums of squares
 COURSE_GAP = 1e-3  # each part adds a phase and a value of every signal
 ASKED, UNASKED = 200, 60  # leaves, beside two a cell, where a requirement is about the gain and where none is
 TRIED = 4  # orbits, the furthest first
@@ -252,12 +254,32 @@ class Attempt:
             if r.kind in ("always", "throughout"):
                 side = 1 if r.relation in ("<", "<=") else -1
                 found = self.ranges.search(obligation, False, DECIDED, side=side)
-                if min(found.upper * side, found.lower * side) < 0 or (found.upper if side > 0 else -found.lower) < 0:
-                    self.ranges.enclose(obligation, on, points=points, gap=DECIDED, side=side)
-                    return
+                near = (
+                    min(found.upper * side, found.lower * side) < 0 or (found.upper if side > 0 else -found.lower) < 0
+                )
+                gap, half = (DECIDED, side) if near else (0.0, 0)
+                shown = self.ranges.enclose(obligation, on, points=points, gap=gap, side=half)
+                ends = (
+                    None if shown is None else (shown.upper, shown.most) if side > 0 else (-shown.lower, -shown.least)
+                )
+                if ends is None or ends[1] <= 0 < ends[0]:  # neither shown nor refuted
+                    self._squared(number, on, {"upper" if side > 0 else "lower": 0.0})
+                return
             self.ranges.enclose(obligation, on, points=points)
+            if r.kind == "sensitivity":  # by an argument of its own, as near as another
+                self._squared(number, on, {"lower": inf, "upper": -inf})
         except Bad as why:
             self.ranges.limits[name] = str(why)
+
+    def _squared(self, number: int, on: int, enough: dict[str, float]) -> None:
+        """Ends of a requirement by sums of squares, which use nothing of its range: proofs/squares.md."""
+        name = f"require[{number}]"
+        asked = Asked(name, on, enough, SQUARED_GAP, self.until - self.ranges.spent, self.watch)
+        try:
+            _, why = Squares(self.writer, asked).line()
+            self.ranges.limits[f"squares of {name}"] = why
+        except KeyboardInterrupt:
+            self.ranges.interrupt()
 
     def _over(self, number: int) -> None:
         """A requirement over ranges of its own: a proof of the same kind, whose lines are taken in."""
