@@ -8,10 +8,11 @@ from itertools import product
 from typing import Any
 
 from .derive import RANGED, Domain
+from .gains import Interval
 from .grammar import constant
 from .rules import Line, Proof, Rejected
 from .sector import applies
-from .theorems import PAIRS, ends, levels, magnitude, movement
+from .theorems import OWN, PAIRS, Variant, ends, levels, magnitude, movement
 
 MOST_STEPS = 20_000
 LONG, GRAIN = 2000, 2**160  # bits of a denominator beyond which levels are rounded up, and to what
@@ -47,9 +48,10 @@ class Route:
 class Results:
     """Everything `results` may claim; `needed` collects the lines it rests on."""
 
+    intervals: tuple[Interval, ...] = ()  # of gains (gains.py)
     part = ""  # the stance the lines are about, or the step from one to the next (graph_outcomes.py)
 
-    def __init__(self, proof: Proof, variant: int = 0) -> None:
+    def __init__(self, proof: Proof, variant: Variant = OWN) -> None:
         self.proof, self.variant, self.needed = proof, variant, set[int]()
         self.unsupported = 0  # of what has to stay positive throughout a stance, the first that is not shown to
         self.derivation = proof.about(variant)
@@ -85,7 +87,7 @@ class Results:
         self.gain = self.contraction() if self.reported == "curve" else self.slopes(self.reported)
         self.push = self.pushed()
         numbered = enumerate(self.statement.requirements, 1)
-        self.requirements = [self.required(n, r) for n, r in numbered if not variant or n == variant]
+        self.requirements = [self.required(n, r) for n, r in numbered if not variant.over or n == variant.over]
 
     def by_state(self) -> dict[str, dict[str, Span | None]]:
         """Bound, sharp bound, radius and push of each state, as `results.states` has them."""
@@ -363,9 +365,10 @@ class Results:
 
     def elsewhere(self, number: int) -> Outcome:
         """A requirement over ranges of its own: a set, routes and orbits of its own lines."""
-        if not any(x.variant == number for x in self.proof.lines.values()):
+        variant = Variant(self.variant.piece, number)
+        if not any(x.variant == variant for x in self.proof.lines.values()):
             return Outcome("undecided", None)
-        own = type(self)(self.proof, number)
+        own = type(self)(self.proof, variant)
         self.needed |= own.needed
         return own.requirements[0]
 

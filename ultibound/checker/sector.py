@@ -22,9 +22,9 @@ def applies(statement: Statement) -> bool:
 
 
 def of_sector(d: Derivation, name: str, domain: Domain | None) -> Meaning | None:
-    """sector-sensitivity[s], -gain[s], -start[s], -residual[s]; None of another name. Raises Unprovable."""
-    found = re.fullmatch(rf"sector-({'|'.join(RANGES)})\[(.+)\]", name)
-    if not found or found[2] != d.state or not applies(d.statement):
+    """sector-sensitivity[s], -gain[s], -start[s], -residual[s], -factor[s,h]; None of another. Raises Unprovable."""
+    found = re.fullmatch(rf"sector-({'|'.join(RANGES)}|factor)\[([^,]+)(?:,([^,]+))?\]", name)
+    if not found or found[2] != d.state or not applies(d.statement) or (found[1] == "factor") != (found[3] is not None):
         return None
     (by,), put, s = d.statement.correction, d.terms.put, d.state
     none, moves = put("number", (), Fraction(0)), d.motion.states if d.motion is not None else ()
@@ -36,6 +36,11 @@ def of_sector(d: Derivation, name: str, domain: Domain | None) -> Meaning | None
     if domain is None:
         raise Unprovable(f"{name} needs a line that gives its set")
     bound, given = d.through(domain, {})
+    if found[1] == "factor":
+        factor = d.terms.factor(d.names(bound, s).of(by), found[3])
+        if factor is None:
+            raise Unprovable(f"{by}: {found[3]} is no factor of it")
+        return d.over(factor, s, given, True)
     if found[1] == "gain":
         return d.over(d.names(bound, s).of(by), s, given, True)
     if found[1] == "residual":

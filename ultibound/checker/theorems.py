@@ -5,6 +5,7 @@ from __future__ import annotations
 from dataclasses import dataclass, replace
 from fractions import Fraction
 from itertools import product
+from typing import NamedTuple
 
 from .derive import Derivation, Domain
 from .flows import Flows
@@ -17,6 +18,28 @@ MOST_SHELLS = 999
 PAIRS = ("slope", "split", "sector", "curve")  # rules that conclude gain and residual
 
 
+class Variant(NamedTuple):
+    """Whose ranges a line is about: those of a piece of gains, of a requirement's `over`; 0: the claim's own."""
+
+    piece: int = 0
+    over: int = 0
+
+    def __bool__(self) -> bool:
+        return self != (0, 0)
+
+
+OWN = Variant()
+
+
+@dataclass(frozen=True)
+class Piece:
+    """A gain, and ends between which it lies."""
+
+    gain: str
+    lower: Fraction
+    upper: Fraction
+
+
 @dataclass(frozen=True)
 class Line:
     rule: str
@@ -25,7 +48,8 @@ class Line:
     concludes: Quantities
     domain: Domain | None = None
     on_set: bool = False
-    variant: int = 0  # the requirement whose `over` the line is about, or 0
+    variant: Variant = OWN  # whose ranges the line is about
+    piece: Piece | None = None  # of gains, that a line states (gains.py)
     flows: Flows | None = None
     metric: Metric | None = None
     basis: tuple[Matrix, Matrix] | None = None  # of entries: rows and their inverse

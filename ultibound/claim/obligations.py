@@ -253,6 +253,14 @@ class Obligations:
             self._of(f"sector-residual[{s}]", g.difference(nominal, self._scope(bound).name(s)), "", ranges),
         )
 
+    def factor(self, domain: Domain, gain: str) -> Obligation:
+        """sector-factor[s,h]: ∂a/∂s over the set, where the one correction is h·a. Raises Bad where it is not."""
+        s, (bound, ranges), (by,) = self.state, self._set(domain), self.claim.correction
+        found = self.graph.factor(self._scope(bound, s).name(by), gain)
+        if found is None:
+            raise Bad(f"{gain} is no factor of {by}")
+        return self._of(f"sector-factor[{s},{gain}]", found, s, ranges)
+
     def _uncorrected(self) -> dict[str, int]:
         return dict.fromkeys(self.claim.correction, self.graph.number(0))
 

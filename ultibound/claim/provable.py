@@ -6,8 +6,9 @@ from dataclasses import replace
 from fractions import Fraction
 
 from .constants import constant
-from .errors import Bad
-from .model import Claim, Quantity, Requirement
+from .errors import Bad, nearest
+from .expression import Expression, Node
+from .model import Claim, Quantity, Range, Requirement
 from .obligations import RANGED, Domain, Obligations
 
 MOST_STATES = 6
@@ -32,6 +33,27 @@ def varied(claim: Claim, number: int) -> Claim:
         stances=(replace(stance, states=states),),
         requirements=tuple(replace(x, over={}) if x is r else x for x in claim.requirements),
     )
+
+
+def narrowed(claim: Claim, gain: str, low: Fraction, high: Fraction) -> Claim:
+    """The claim with a gain that is not known but for its ends, the same at every step (proofs/sensitivity-gain.md)."""
+    ends = Range(*(Expression(str(x), (Node("number", value=x),)) for x in (low, high)))
+    gains = {n: e for n, e in claim.gains.items() if n != gain}
+    return replace(claim, gains=gains, uncertain={**claim.uncertain, gain: Quantity(gain, ends, held=True)})
+
+
+def not_followed(claim: Claim, gain: str) -> str | None:
+    """Why no interval of a gain can be proved, in one line; None if one can."""
+    if gain not in claim.gains:
+        return f"gains: {gain[:60]!r} is not among them{nearest(gain, claim.gains)}"
+    if claim.stances[0].name:
+        return f"gains.{gain}: intervals of gains are not known between stances yet; use --set for each value"
+    for number, r in enumerate(claim.requirements, 1):
+        exponents, ends = _folded(claim, r)
+        if gain in exponents | ends:
+            why = "an exponent" if gain in exponents else "the end of a range, a weight, or a bound asked for"
+            return f"gains.{gain}: also sets {why} (seen with require[{number}]), taken at its value; use --set"
+    return None
 
 
 def of_stance(claim: Claim, name: str) -> Claim:

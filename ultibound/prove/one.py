@@ -23,7 +23,7 @@ from ..checker.graph_outcomes import results_of
 from ..checker.reals import Undefined
 from ..checker.rules import Rejected
 from ..checker.sector import applies
-from ..checker.theorems import levels, movement, sharpest
+from ..checker.theorems import Variant, levels, movement, sharpest
 from ..claim import Bad, Claim, ClaimError
 from ..claim.constants import constant
 from ..claim.obligations import RANGED, Domain, Obligations
@@ -67,7 +67,7 @@ def best(whole: Attempt) -> Attempt:
         return whole
     attempt = Attempt(
         whole.claim, whole.gap, whole.until, whole.watch, whole.sharp, whole.smaller, whole.variant, whole.derivation,
-        whole.known,
+        whole.known, whole.terse,
     )  # fmt: skip
     return attempt if attempt.results.settled and attempt.decided >= whole.decided else whole
 
@@ -77,7 +77,8 @@ class Attempt:
 
     `sharp`: the error curve is followed to the gap, not just roughly. `within`: a radius smaller than the largest.
     `variant`, `derivation`: one requirement over ranges of its own, and what the checker derives for it.
-    `known`: flows of the stance that were proved in an earlier pass.
+    `known`: flows of the stance that were proved in an earlier pass. `terse`: only the verdicts count, with nothing
+    said to people and no second argument for what one shows.
     """
 
     writes: type[Writer] = Writer
@@ -93,7 +94,9 @@ class Attempt:
         variant: int = 0,
         derivation: Derivation | None = None,
         known: Known | None = None,
+        terse: bool = False,
     ) -> None:
+        self.terse = terse
         self.claim, self.gap, self.until, self.watch = claim, gap, until, watch
         self.sharp, self.within = sharp, within
         self.variant, self.derivation, self.known = variant, derivation, {} if known is None else known
@@ -108,8 +111,8 @@ class Attempt:
         for number in () if variant else apart(claim):
             self._over(number)
         self.results = results_of(self.writer.proof)
-        remarks = self._remarks()
-        self.pursue = any(p for _, p in remarks)
+        self.remarks = self._remarks()
+        self.pursue = any(p for _, p in self.remarks)
         waiting = {
             r.kind
             for r, o in zip(claim.requirements, self.results.requirements, strict=True)
@@ -122,14 +125,24 @@ class Attempt:
             and bool(waiting & {"settles", "bound", "push", "steps", "radius"})
         )
         self.decided = sum(r.verdict != "undecided" for r in self.results.requirements)
-        text = assembled(claim, self.results, remarks)
-        self.certificate = sealed(claim, text, self.writer.pruned(self.results.needed), self.ranges.interrupted)
+        if not terse:
+            self.seal()
+
+    def seal(self) -> None:
+        """The certificate of what is on the proof."""
+        text = assembled(self.claim, self.results, self.remarks)
+        lines = self.writer.pruned(self.results.needed)
+        self.certificate = sealed(self.claim, text, lines, self.ranges.interrupted)
 
     def _remarks(self) -> list[tuple[str | None, bool]]:
         """What limits each requirement, and whether a smaller gap may decide it."""
         state = Search(self.ranges.limits, self.ranges.interrupted, self.near_region)
         told = Explained(self.obligations, self.ranges, self.results, self.moved)
-        return Remarks(self.claim, self.obligations, self.results, state, told).all()
+        remarks = Remarks(self.claim, self.obligations, self.results, state, told)
+        if not self.terse:
+            return remarks.all()
+        open_ = [o.verdict == "undecided" and not self.results.unsupported for o in self.results.requirements]
+        return [(None, x and remarks.open(n)) for n, x in enumerate(open_, 1)]
 
     def _prove(self) -> None:
         """Lines for the certified set, the routes on it, orbits in it, and the requirements."""
@@ -266,7 +279,7 @@ class Attempt:
                     self._squared(number, on, {"upper" if side > 0 else "lower": 0.0})
                 return
             self.ranges.enclose(obligation, on, points=points)
-            if r.kind == "sensitivity":  # by an argument of its own, as near as another
+            if r.kind == "sensitivity" and not self.terse:  # by an argument of its own, as near as another
                 self._squared(number, on, {"lower": inf, "upper": -inf})
         except Bad as why:
             self.ranges.limits[name] = str(why)
@@ -286,10 +299,12 @@ class Attempt:
         derivation = Derivation(statement_varied(self.writer.derivation.statement, number))
         claim = varied(self.claim, number)
         own = best(
-            type(self)(claim, self.gap, self.until, self.watch, self.sharp, None, number, derivation, self.known)
+            type(self)(
+                claim, self.gap, self.until, self.watch, self.sharp, None, number, derivation, self.known, self.terse
+            )
         )
         self.ranges.interrupted |= own.ranges.interrupted
-        self.writer.adopt(own.writer, number, own.results.needed)
+        self.writer.adopt(own.writer, Variant(0, number), own.results.needed)
 
     def _target(self, state: str = "") -> Proved:
         s, claim = state or self.obligations.state, self.claim
