@@ -49,9 +49,7 @@ def prove(claim: str, output: str | None, settings: tuple[str, ...], gain_interv
 
     Exit status: 0 every requirement is proved, 1 one is not, 2 the input cannot be used, 130 interrupted.
     """
-    if gain_interval is not None:
-        raise click.UsageError("--gain-interval: gain intervals cannot be proved yet; use --set with single gains")
-    sys.exit(_prove(Path(claim), Path(output) if output else None, _settings(settings), as_json))
+    sys.exit(_prove(Path(claim), Path(output) if output else None, _settings(settings), as_json, gain_interval))
 
 
 @cli.command()
@@ -106,7 +104,9 @@ def _settings(settings: tuple[str, ...]) -> dict[str, str]:
     return found
 
 
-def _prove(path: Path, output: Path | None, settings: dict[str, str], as_json: bool) -> int:
+def _prove(
+    path: Path, output: Path | None, settings: dict[str, str], as_json: bool, gain_interval: str | None = None
+) -> int:
     from .claim import ClaimError, read_claim
     from .prove import prove as proved
     from .report.cells import residual_by_cell, residual_wanted
@@ -120,7 +120,7 @@ def _prove(path: Path, output: Path | None, settings: dict[str, str], as_json: b
         if target.exists() and any(target.samefile(path.parent / f) for f in (path.name, *claim.data)):
             raise FileExistsError(17, "is the claim or its data; name another file for the certificate", str(target))
         with Progress() as progress:
-            certificate = proved(claim, progress)
+            certificate = proved(claim, progress, gain_interval)
         certificate.write(target)
     except ClaimError as why:
         click.echo(str(why), err=True)
