@@ -7,6 +7,7 @@ certificate is checked again from its bytes before anyone sees it.
 from __future__ import annotations
 
 import time
+from dataclasses import replace
 
 from ..bounding.defined import undefined_point
 from ..bounding.evaluate import to_float
@@ -83,7 +84,7 @@ def _proved(claim: Claim, watch: Watch, gain: str | None) -> Certificate:
     verdict = _checked(certificate, kept)
     if verdict.status != "valid":
         raise InternalError(f"{verdict.place}: {verdict.reason}")
-    return certificate
+    return replace(certificate, accepted=verdict)
 
 
 def _checked(certificate: Certificate, attempt: Attempt) -> Verdict:
