@@ -49,9 +49,7 @@ def prove(claim: str, output: str | None, settings: tuple[str, ...], gain_interv
 
     Exit status: 0 every requirement is proved, 1 one is not, 2 the input cannot be used, 130 interrupted.
     """
-    if gain_interval is not None:
-        raise click.UsageError("--gain-interval: gain intervals cannot be proved yet; use --set with single gains")
-    sys.exit(_prove(Path(claim), Path(output) if output else None, _settings(settings), as_json))
+    sys.exit(_prove(Path(claim), Path(output) if output else None, _settings(settings), as_json, gain_interval))
 
 
 @cli.command()
@@ -76,7 +74,7 @@ def demo(folder: str) -> None:
             click.echo(f"wrote {target}", err=True)
     main_claim = home / "striding.toml"
     click.echo(f"proving {main_claim}: the same as `ultibound prove {main_claim}`", err=True)
-    sys.exit(_prove(main_claim, None, {}, False, home / "striding.html"))
+    sys.exit(_prove(main_claim, None, {}, False, report_to=home / "striding.html"))
 
 
 @cli.command()
@@ -175,7 +173,12 @@ def _settings(settings: tuple[str, ...]) -> dict[str, str]:
 
 
 def _prove(
-    path: Path, output: Path | None, settings: dict[str, str], as_json: bool, report_to: Path | None = None
+    path: Path,
+    output: Path | None,
+    settings: dict[str, str],
+    as_json: bool,
+    gain_interval: str | None = None,
+    report_to: Path | None = None,
 ) -> int:
     from .claim import ClaimError, read_claim
     from .prove import prove as proved
@@ -191,7 +194,7 @@ def _prove(
         if target.exists() and any(target.samefile(path.parent / f) for f in (path.name, *claim.data)):
             raise FileExistsError(17, "is the claim or its data; name another file for the certificate", str(target))
         with Progress() as progress:
-            certificate = proved(claim, progress)
+            certificate = proved(claim, progress, gain_interval)
         certificate.write(target)
     except ClaimError as why:
         click.echo(str(why), err=True)
