@@ -14,6 +14,7 @@ K, EPS, E0, EN, N = symbol("k"), symbol("epsilon"), symbol("e0"), symbol("e_n"),
 ROUTES = {
     "slope": "slopes of the map over the whole set, and what it misses at the target",
     "split": "the nominal gait and the controller's correction told apart",
+    "sector": "how the next state follows the correction, and the correction the error",
     "curve": "the error curve: how far a step leads from within each distance",
 }
 
@@ -178,7 +179,8 @@ def paragraph(found: Accepted) -> Text:
     opening: Text = ("No bound in the long run is proved. ",)
     if far:
         opening = (
-            "For the step-to-step map stated, every start in the certified set and every admissible course of the uncertain "
+            "For the step-to-step map stated, every start in the certified set and every admissible course of the "
+            "uncertain "
             "quantities, in the long run ",
             *(x for k, each in enumerate(far) for x in ((", " if k else ""), *each)),
             *_pair(found),
@@ -186,8 +188,10 @@ def paragraph(found: Accepted) -> Text:
         )
     return (
         *opening,
-        f"Of {sum(counts)} requirements {counts[0]} are proved, {counts[1]} refuted and {counts[2]} undecided. These are "
-        f"proved enclosures, not samples: a certificate of {found.lines} proof lines (SHA-256 {found.digest[:16]}..., made "
+        f"Of {sum(counts)} requirements {counts[0]} are proved, {counts[1]} refuted and {counts[2]} undecided. These "
+        "are "
+        f"proved enclosures, not samples: a certificate of {found.lines} proof lines (SHA-256 {found.digest[:16]}..., "
+        "made "
         f"with ultibound {found.made_with.get('ultibound', '?')}) can be re-verified with a checker that needs Python "
         "alone. They are about the model, not about a machine.",
     )
