@@ -27,7 +27,7 @@ from .accepted import Accepted
 from .margins import exact
 
 LATE, LONGEST, MORE, SEED, MOST_CHOICES, DIRECTIONS = 20, 400, 10, 0, 48, 8
-LEFT = 1e-3  # share of the bound that may be left of where a run starts
+LEFT = 1e-6  # share of the bound that may be left of where a run starts
 
 
 def flow_table(witness: Mapping[str, Any], motion: Motion) -> FlowTable:
