@@ -687,7 +687,7 @@ def test_explain(tmp_path: Path) -> None:
     status, out, err = run_here("explain", EXAMPLES / "striding.toml")
     assert status == 0 and not err
     for part in ("Nothing of it has been proved", "xd′ = (g + height′′)/height·x + gust", "∂foot/∂v = ∂reach/∂v + ∂shift/∂v", "any course in its range",
-                 "9 × 6 gaits", "slope[v,v]", "target-slope[v,v_cmd]", "require[7]", "[0.36, 0.42]"):  # fmt: skip
+                 "9 × 6 gaits", "slope[v,v]", "target-slope[v,v_cmd]", "sector-residual[v]", "shell[j]", "require[7]", "[0.36, 0.42]"):  # fmt: skip
         assert part in out, part
     status, out, _ = run_here("explain", EXAMPLES / "sidestepping.toml", "--latex", "--set", "kappa=0.3")
     assert (

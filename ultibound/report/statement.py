@@ -2,9 +2,9 @@
 
 from __future__ import annotations
 
+import functools
 from collections.abc import Callable, Sequence
 from fractions import Fraction
-from functools import partial as partial_
 
 from ..claim import Claim
 from ..claim.errors import Bad
@@ -251,26 +251,39 @@ def _listed(claim: Claim) -> list[tuple[Obligation, str, Formula]]:
         found.append((obligation, obligation.name, meaning))
 
     for s in o.states:
-        plus_, aim = symbol(s, "+"), symbol(s, "*")
-        add(partial_(o.target, s), aim)
-        add(partial_(o.image, s), plus_)
+        after, aim = symbol(s, "+"), symbol(s, "*")
+        add(functools.partial(o.target, s), aim)
+        add(functools.partial(o.image, s), after)
         for x in o.states:
-            add(partial_(o.slope, region, s, x), partial(plus_, symbol(x)))
-        add(partial_(o.miss, s), row(minus(plus_, aim), words(" on the target")))
+            add(functools.partial(o.slope, region, s, x), partial(after, symbol(x)))
+        add(functools.partial(o.miss, s), row(minus(after, aim), words(" on the target")))
         for h in o.moving(s):
-            add(partial_(o.target_slope, h, s), partial(aim, symbol(h)))
+            add(functools.partial(o.target_slope, h, s), partial(aim, symbol(h)))
     if claim.correction and len(o.states) == 1:
         s = o.state
         nominal = call("N", symbol(s))
-        add(partial_(o.split_slope, region), partial(plus(symbol(s), minus(symbol(s, "+"), nominal)), symbol(s)))
-        add(partial_(o.split_residual, region), words("nominal step less the state, correction on the target"))
+        add(
+            functools.partial(o.split_slope, region),
+            partial(plus(symbol(s), minus(symbol(s, "+"), nominal)), symbol(s)),
+        )
+        add(functools.partial(o.split_residual, region), words("nominal step less the state, correction on the target"))
+    if len(claim.correction) == 1 and len(o.states) == 1 and claim.horizon == 1:
+        s, by = o.state, symbol(claim.correction[0])
+        aimed = row(by, words(" on the target"))
+        meanings = (partial(symbol(s, "+"), by), partial(by, symbol(s)), aimed, words("nominal step less the state"))
+        for k, meaning in enumerate(meanings):
+            add(functools.partial(_sector, o, region, k), meaning)
     for k in range(1, len(o.motion.positive) + 1 if o.motion is not None else 1):
         what = "the duration" if k == 1 else "what the leg's push and the signals' one-sided effect rest on"
-        add(partial_(o.support, k, region), words(f"{what}, above 0 throughout"))
+        add(functools.partial(o.support, k, region), words(f"{what}, above 0 throughout"))
     for n, r in enumerate(claim.requirements, 1):
         if r.kind in ("value", "sensitivity", "always", "throughout") and r.stance is None:
-            add(partial_(o.requirement, n, region), _asked(r))
+            add(functools.partial(o.requirement, n, region), _asked(r))
     return found
+
+
+def _sector(o: Obligations, region: Domain, number: int) -> Obligation:
+    return o.sector(region)[number]
 
 
 def _asked(r: Requirement) -> Formula:
@@ -310,6 +323,14 @@ def _ends(claim: Claim) -> list[Text]:
         ),
         ("S has to contain every target, lie in the region and be led into itself; the bound has to lie inside S.",),
     ]
+    if len(claim.stances[0].states) == 1 and not claim.stances[0].name:
+        found.append(
+            (
+                "The error curve is followed too: F − x* over shells about the target, as many as it takes (",
+                Code("shell[j]"),
+                ").",
+            )
+        )
     if len(claim.stances[0].states) > 1:
         found.append(
             (

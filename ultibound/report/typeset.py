@@ -151,7 +151,7 @@ def _plain_row(f: Formula) -> str:
     for p in f.parts:
         text = plain(p)
         tight = p.kind == "operator" and p.text in ("∂", ",", ":")
-        glued = not found or found.endswith(("∂", "(", " ")) or (tight and p.text != "∂")
+        glued = not found or found.endswith(("∂", "(", " ")) or text.startswith(" ") or (tight and p.text != "∂")
         found += text if glued else f" {text}"
     return found
 
