@@ -49,7 +49,7 @@ NORMS = ("matrices",)
 SEVERAL = ("jacobians", "several", "outcomes", "periodic", "products", "absorbed")
 GRAPHS = ("graph", "graph_outcomes")
 READING = ("grammar", "numerals", "statement", "tables", "scope", "command")
-SAMPLE, SEED = 20, 20260101
+SAMPLE, SEED = 10, 20260101
 MOST_EQUIVALENT = 0.05
 
 
