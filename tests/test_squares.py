@@ -12,6 +12,7 @@ import pytest
 from tests.conftest import ends, proved
 from tests.polynomials import always, claim
 from tests.published.test_published import BOX
+from tests.squares import accepted, changes
 from tests.stances import stance
 from ultibound.checker import check
 from ultibound.checker.document import canonical, digest
@@ -56,6 +57,8 @@ def test_positive_polynomials(seed: int) -> None:
     (line,) = lines(certificate, "squares", "require[1]")
     assert certificate.proved and line["witness"]["bits"] == 0 and set(line["concludes"]) == {"lower"}
     assert 0 <= Fraction(line["concludes"]["lower"]) <= Fraction(21, 1000)  # the margin, as samples found it
+    assert accepted(certificate, line, line["witness"])
+    assert not any(accepted(certificate, line, x) for x in changes(line["witness"], 10**9 if LONG else 40))
     without = json.loads(json.dumps(certificate.entries))
     without["proof"].remove(line)
     verdict = check(canonical({**without, "digest": digest(without)}))
@@ -65,8 +68,8 @@ def test_positive_polynomials(seed: int) -> None:
 @pytest.mark.parametrize(
     ("that", "verdict"),
     [
-        ("always(p >= 0)", "proved"), ("always(p > -0.001)", "proved"), ("always(p >= 0.03)", "undecided"), ("always(-p <= 0)", "proved"),
-        ("always(-p < -0.03)", "undecided"),
+        ("always(p >= 0)", "proved"), ("always(p > -0.001)", "proved"), ("always(p >= 0.03)", "refuted"), ("always(-p <= 0)", "proved"),
+        ("always(-p < -0.03)", "refuted"),
     ],
 )  # fmt: skip
 def test_an_inequality_on_either_side(that: str, verdict: str) -> None:

@@ -9,12 +9,13 @@ from .grammar import constant
 from .matrices import Metric, dot
 from .results import NOTHING, Outcome, Results, Route, Span, compared, greater, less, opposed, verdict
 from .rules import Proof, Rejected
+from .theorems import OWN, Variant
 
 
 class SeveralResults(Results):
     """Everything `results` may claim of a claim of several states."""
 
-    def __init__(self, proof: Proof, variant: int = 0) -> None:
+    def __init__(self, proof: Proof, variant: Variant = OWN) -> None:
         self.proof, self.variant, self.needed = proof, variant, set[int]()
         self.derivation = proof.about(variant)
         self.statement, self.states = self.derivation.statement, self.derivation.states
@@ -50,7 +51,7 @@ class SeveralResults(Results):
         self.pushes = {s: self.pushed_along(s) for s in self.states}
         self.radii = {s: self.radius_along(s) for s in self.states}
         numbered = enumerate(self.statement.requirements, 1)
-        self.requirements = [self.required(n, r) for n, r in numbered if not variant or n == variant]
+        self.requirements = [self.required(n, r) for n, r in numbered if not variant.over or n == variant.over]
 
     def escapes(self) -> bool:
         """Whether a point leaves the region in some state."""
