@@ -507,6 +507,7 @@ def test_every_number_that_claims_more_is_rejected(entries: dict[str, Any]) -> N
 
 def test_every_line_is_needed(entries: dict[str, Any]) -> None:
     """Without a line, later numbers shift down; what used it has nothing to rest on."""
+    ranges = {line["proves"] for line in entries["proof"] if line["rule"] == "range"}
     for gone in range(1, len(entries["proof"]) + 1):
 
         def spoil(e: dict[str, Any], gone: int = gone) -> None:
@@ -518,6 +519,8 @@ def test_every_line_is_needed(entries: dict[str, Any]) -> None:
         own = entries["proof"][gone - 1]["proves"].startswith("over[")
         # of what is asked of several stances a point in one may say as much as a point in another
         own |= ":require[" in entries["proof"][gone - 1]["proves"] and entries["proof"][gone - 1]["rule"] == "point"
+        # what is proved by squares too, by subdivision as well
+        own |= entries["proof"][gone - 1]["rule"] == "squares" and entries["proof"][gone - 1]["proves"] in ranges
         assert own or judged(entries, spoil).status == "invalid", gone
 
 
