@@ -51,7 +51,7 @@ class StanceSearch(SeveralAttempt):
     ) -> None:  # fmt: skip
         """`whole`: the proof of all stances; `others`: the ranges of all of them, so far."""
         self.claim, self.gap, self.until, self.watch = of_stance(claim, stance.name), gap, until, watch
-        self.stance, self.variant, self.known = stance, 0, known
+        self.stance, self.variant, self.known, self.terse = stance, 0, known, False
         self.obligations, self.writer = Obligations(self.claim), StanceWriter(whole.proof, whole.raw, stance.name)
         self.ranges = Shared(self.claim, self.obligations.graph, self.writer, gap, until, watch, others)
         self._flow()
