@@ -507,20 +507,21 @@ def test_every_number_that_claims_more_is_rejected(entries: dict[str, Any]) -> N
 
 def test_every_line_is_needed(entries: dict[str, Any]) -> None:
     """Without a line, later numbers shift down; what used it has nothing to rest on."""
-    ranges = {line["proves"] for line in entries["proof"] if line["rule"] == "range"}
-    for gone in range(1, len(entries["proof"]) + 1):
+    names = [(x["rule"], x["proves"]) for x in entries["proof"]]
+    for number, (rule, proves) in enumerate(names, 1):
+        # where a range and squares prove the same requirement, one of them may do
+        other = {"range": "squares", "squares": "range"}.get(rule), proves
+        gone = {number, *(n for n, name in enumerate(names, 1) if name == other)}
 
-        def spoil(e: dict[str, Any], gone: int = gone) -> None:
-            del e["proof"][gone - 1]
+        def spoil(e: dict[str, Any], gone: set[int] = gone) -> None:
+            e["proof"] = [x for n, x in enumerate(e["proof"], 1) if n not in gone]
             for line in e["proof"]:
-                line["uses"] = [n - (n > gone) for n in line["uses"] if n != gone]
+                line["uses"] = [n - sum(g < n for g in gone) for n in line["uses"] if n not in gone]
 
         # a requirement over ranges of its own may rest on fewer lines than its whole proof has
-        own = entries["proof"][gone - 1]["proves"].startswith("over[")
+        own = proves.startswith("over[")
         # of what is asked of several stances a point in one may say as much as a point in another
-        own |= ":require[" in entries["proof"][gone - 1]["proves"] and entries["proof"][gone - 1]["rule"] == "point"
-        # what is proved by squares too, by subdivision as well
-        own |= entries["proof"][gone - 1]["rule"] == "squares" and entries["proof"][gone - 1]["proves"] in ranges
+        own |= ":require[" in proves and rule == "point"
         assert own or judged(entries, spoil).status == "invalid", gone
 
 
@@ -711,6 +712,33 @@ def test_a_flow_spoiled_in_one_place_is_rejected() -> None:
 
         if k % (1 if LONG else 23) == 0:  # of each entry, of each power of time and of the cell's coordinates
             rejected(judged(entries, bend), f"proof line {number + 1}: error")
+
+
+def test_squares_spoiled_in_one_place_are_rejected() -> None:
+    """Coefficients, powers, weights and bounds of the witness, each moved by one; a piece or a square left out."""
+    entries = sample_pendulum()
+    (number,) = [n for n, x in enumerate(entries["proof"]) if x["rule"] == "squares"]
+    text = json.dumps(entries["proof"][number]["witness"]["pieces"])
+    found = list(re.finditer(r"-?\d+", text))
+    assert len(found) > 300
+    for whole in found[:: 1 if LONG else 17]:
+        changed = f"{text[: whole.start()]}{int(whole[0]) + 1}{text[whole.end() :]}"
+
+        def spoil(e: dict[str, Any], changed: str = changed) -> None:
+            e["proof"][number]["witness"]["pieces"] = json.loads(changed)
+
+        if int(whole[0]) != -1:  # 0 is no coefficient, and -1 and 1 have the same square
+            rejected(judged(entries, spoil), f"proof line {number + 1}")
+    for path in (("pieces", 0), ("pieces", 0, "lower"), ("pieces", 0, "upper", "squares", 0), ("trees", 0), ("order",)):
+
+        def without(e: dict[str, Any], path: tuple[Any, ...] = path) -> None:
+            del at(e["proof"][number]["witness"], path[:-1])[path[-1]]
+
+        rejected(judged(entries, without), f"proof line {number + 1}")
+    rejected(
+        judged(entries, lambda e: e["proof"][number].update(rule="range")),
+        f"proof line {number + 1}: witness: the keys",
+    )
 
 
 def test_no_set_without_every_line_of_support() -> None:

@@ -223,9 +223,10 @@ class SeveralResults(Results):
 
     def ranged(self, number: int, r: Any) -> Outcome:
         """What a point of a ball breaks may hold in the ball of another metric, unless the claim fixes the metric."""
-        found, line = super().ranged(number, r), self.one("range", f"require[{number}]")
+        found, lines = super().ranged(number, r), self.ranges(number)
         if found.verdict == "refuted" and not (self.kind == "region" or self.stated()):
-            return found if line is not None and not line.on_set else Outcome("undecided", found.value, found.attained)
+            known = bool(lines) and not any(x.on_set for x in lines)
+            return found if known else Outcome("undecided", found.value, found.attained)
         return found
 
     def settles(self) -> Outcome:
