@@ -34,6 +34,7 @@ PROOFS = (
     "results",
     "holding",
     "derive",
+    "sector",
     "horizon",
     "document",
     "__init__",

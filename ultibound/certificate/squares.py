@@ -10,6 +10,7 @@ from collections.abc import Callable, Mapping
 from dataclasses import dataclass
 from fractions import Fraction
 from itertools import product
+from math import inf, isinf
 from typing import Any
 
 from ..checker.models import Exponents
@@ -19,18 +20,20 @@ from ..checker.reals import Undefined
 from ..checker.rules import Rejected
 from ..checker.squares import LEAF, expansion_of, shown
 from ..polynomial.truncation import truncated
-from ..positivity.bounds import bounded_below
+from ..positivity.bounds import bounded_below, least_sampled, work
 from .lines import Writer
 
 BITS = 56
 ORDERS = {1: (12, 24), 2: (8, 16), 3: (8, 12)}  # of models, by the number of variables that matter
 FEW = (4, 8)  # of more variables
 MOST_TOPS = 64  # combinations of library cells and listed values
-MOST_PIECES = 32
+MOST_PIECES, WORK = 32, 40_000  # parts beyond these; entries of Gram matrices, over all parts
 DEGREE = 12  # up to which an exact polynomial is left as it is
 SHARE = 4  # the remainder, and what is cut off, may each take one part in so many of the gap
 LEAST, NOTHING = 0.02, 1e-6  # share of the spread of a polynomial that counts as its size near zero; and at least
 
+SIGNS = {"lower": 1, "upper": -1}
+GRAIN = 2**20  # of points
 TREE = list[str]
 
 
@@ -54,7 +57,8 @@ class Squares:
         self.meaning = writer.derivation.meaning(asked.proves, writer.domain(asked.on))
         self.pieces: list[dict[str, Any]] = []
         self.found: dict[str, Fraction] = {}
-        self.most = MOST_PIECES
+        self.most = self.tops = 0
+        self.breaking: dict[str, Fraction] = {}  # a point that seems to have less than would be enough
         self.said = ""  # of the last programme
 
     def line(self) -> tuple[int | None, str]:
@@ -62,7 +66,7 @@ class Squares:
         tops = [list(top) for top in product(*(v.cells for v in self.meaning.variables))]
         if len(tops) > MOST_TOPS:
             return None, f"{len(tops)} cells: sums of squares are tried over {MOST_TOPS} at most"
-        self.most = MOST_PIECES + len(tops)
+        self.tops, self.most = len(tops), MOST_PIECES + len(tops)
         try:
             witness, expansion = self.nearest(tops[0])
             trees = [" ".join(self.divided(expansion, top, len(tops) - k)) for k, top in enumerate(tops, 1)]
@@ -86,18 +90,35 @@ class Squares:
         return witness, expansion_of(self.writer.derivation, self.meaning, witness, self.writer.flows())
 
     def budget(self, near: Polynomial) -> float:
-        """How far off bounds may be: the gap times the least magnitude, or a share of the spread near zero."""
+        """How far off bounds may be: by the gap, or as far as what would be enough leaves room at all."""
         count = len(self.meaning.variables)
         middle = abs(float(near.get((0,) * count, Fraction(0))))
         far = float(size(count, {e: c for e, c in near.items() if any(e)}))
-        return self.asked.gap * max(middle - far, LEAST * far, NOTHING)
+        found = self.asked.gap * max(middle - far, LEAST * far, NOTHING)
+        return min([found, *(room for name in self.asked.enough if 0 < (room := self.room(near, name)) < inf)])
+
+    def room(self, near: Polynomial, name: str, box: Box | None = None) -> float:
+        """Between what would be enough and the end that samples of the box show; below 0 where it cannot be reached."""
+        sign, enough = SIGNS[name], self.asked.enough[name]
+        if isinf(enough):
+            return inf
+        count = len(self.meaning.variables)
+        signed = {e: sign * c for e, c in near.items()} or {(0,) * count: Fraction(0)}
+        least, at = least_sampled(signed, count)
+        if least < sign * enough and box is not None:
+            whole = [Fraction(round(float(t) * GRAIN), GRAIN) for t in at]
+            self.breaking = {
+                v.name: (low + high + (high - low) * t) / 2
+                for v, (low, high), t in zip(self.meaning.variables, box, whole, strict=True)
+            }
+        return least - sign * enough
 
     def divided(self, expansion: Expansion, box: Box, others: int) -> TREE:
         """The splitting tree of a box whose parts have squares; `others`: boxes that come after it."""
         room = time.monotonic() < self.asked.until and len(self.pieces) + others < self.most
         try:
             near, rest = expansion.over_box(box)
-            stated, close = self.piece(near, rest)
+            stated, close = self.piece(near, rest, box)
         except Undefined:
             stated, close, near, rest = None, False, {}, Fraction(0)
         axis = None if close else self.widest(near, box)
@@ -126,23 +147,30 @@ class Squares:
                 weights[i] = bent, (high - low) / (v.cells[-1][1] - v.cells[0][0])
         return max(weights, key=lambda i: weights[i]) if weights else None
 
-    def piece(self, near: Polynomial, rest: Fraction) -> tuple[dict[str, Any] | None, bool]:
+    def piece(self, near: Polynomial, rest: Fraction, box: Box) -> tuple[dict[str, Any] | None, bool]:
         """A polynomial near the term and its squares, and whether they are as close as is asked."""
         count, budget = len(self.meaning.variables), self.budget(near)
         whole = not rest and max(map(sum, near), default=0) <= DEGREE
         p = near if whole else truncated(near, budget / SHARE)
         off = float(rest + size(count, {e: near.get(e, Fraction(0)) - p.get(e, Fraction(0)) for e in near | p}))
         p = p or {(0,) * count: Fraction(0)}
+        self.most = min(self.most, self.tops + WORK // work(p))
+        if self.tops * work(p) > 2 * WORK:
+            raise Rejected(
+                f"{self.tops} cells with polynomials of so many terms: more than sums of squares are tried for"
+            )
         stated: dict[str, Any] = {"polynomial": written(p)}
         close = True
         for name, enough in self.asked.enough.items():
-            sign = 1 if name == "lower" else -1
+            sign = SIGNS[name]
             found, low, said = bounded_below({e: sign * c for e, c in p.items()}, budget / SHARE, sign * enough + off)
             self.said = "; ".join(said)
             if found is None:
                 return None, False
             bound = float(found.bound)
-            close &= bound - off >= sign * enough or (bound >= low - budget and SHARE * rest <= budget)
+            room = self.room(near, name, box)
+            near_enough = bound >= low - budget and SHARE * rest <= budget
+            close &= bound - off >= sign * enough or (near_enough and not 0 < room < inf)
             squares = [[str(w), n, written(q)] for w, n, q in found.squares]
             stated[name] = {"bound": str(sign * found.bound), "squares": squares}
         return stated, close
