@@ -299,6 +299,51 @@ Qed.
 Theorem piece_start (y Y before err : R) : Rabs (y - before) <= err -> Rabs (y - Y) <= Rabs (Y - before) + err.
 Proof. unfold Rabs. repeat destruct (Rcase_abs _); lra. Qed.
 
+(* (4) For a function smooth around [c − ρ, c + ρ] with |f^(K)|/K! <= b there, the Taylor polynomial of K terms is off by at most b ρ^K. *)
+Theorem taylor_remainder (f : R -> R) (K : nat) (c rho wider b v : R) : 0 <= rho < wider ->
+  (forall t, c - wider < t < c + wider -> forall k, (k <= S K)%nat -> ex_derive_n f k t) ->
+  (forall t, c - rho <= t <= c + rho -> Rabs (Derive_n f (S K) t) / INR (fact (S K)) <= b) -> Rabs v <= rho ->
+  Rabs (f (c + v) - sum_f_R0 (fun k => v ^ k / INR (fact k) * Derive_n f k c) K) <= b * rho ^ S K.
+Proof.
+  intros Hr D B V. apply Rabs_ends in V. assert (Fp : forall k, 0 < INR (fact k)) by (intro; apply INR_fact_lt_0).
+  assert (B0 : 0 <= b).
+  { eapply Rle_trans; [|apply (B c); lra]. apply Rmult_le_pos; [apply Rabs_pos|left; apply Rinv_0_lt_compat, Fp]. }
+  assert (Last : forall z u, c - rho <= z <= c + rho -> 0 <= u <= rho -> Rabs (u ^ S K / INR (fact (S K)) * Derive_n f (S K) z) <= b * rho ^ S K).
+  { intros z u Hz Hu. unfold Rdiv. rewrite !Rabs_mult, (Rabs_pos_eq (u ^ S K)) by (apply pow_le; lra).
+    rewrite (Rabs_pos_eq (/ _)) by (left; apply Rinv_0_lt_compat, Fp). specialize (B z Hz). unfold Rdiv in B.
+    assert (P : u ^ S K <= rho ^ S K) by (apply pow_incr; lra). assert (P0 : 0 <= u ^ S K) by (apply pow_le; lra).
+    rewrite Rmult_assoc, (Rmult_comm (/ _)), (Rmult_comm b). apply Rmult_le_compat; trivial.
+    apply Rmult_le_pos; [apply Rabs_pos|left; apply Rinv_0_lt_compat, Fp]. }
+  destruct (Rtotal_order v 0) as [Neg|[->|Pos]].
+  - (* f(−t) from −c up *)
+    assert (Loc : forall t k, c - wider < t < c + wider -> (k <= S K)%nat -> locally t (fun y => forall j, (j <= k)%nat -> ex_derive_n f j y)).
+    { intros t k Ht Hk. assert (Hm : 0 < Rmin (t - (c - wider)) (c + wider - t)) by (apply Rmin_glb_lt; lra).
+      exists (mkposreal _ Hm). intros y Hy j Hj. apply D; [|lia].
+      assert (H3 := Rmin_l (t - (c - wider)) (c + wider - t)). assert (H4 := Rmin_r (t - (c - wider)) (c + wider - t)).
+      unfold ball in Hy; cbn in Hy; unfold AbsRing_ball, abs, minus, plus, opp in Hy; cbn in Hy. apply Rabs_def2 in Hy. lra. }
+    destruct (Taylor_Lagrange (fun t => f (- t)) K (- c) (- c - v) ltac:(lra)) as [z [Hz E]].
+    { intros t Ht k Hk. apply ex_derive_n_comp_opp. apply Loc; [lra|exact Hk]. }
+    cbv beta in E. replace (- (- c - v)) with (c + v) in E by ring. replace (- c - v - - c) with (- v) in E by ring. rewrite E.
+    rewrite (Derive_n_comp_opp f (S K) z) by (apply Loc; [lra|lia]).
+    rewrite (sum_eq _ (fun k => v ^ k / INR (fact k) * Derive_n f k c)).
+    2:{ intros k Hk. rewrite (Derive_n_comp_opp f k (- c)) by (apply Loc; [rewrite Ropp_involutive; lra|lia]).
+        rewrite Ropp_involutive. replace ((- v) ^ k) with ((-1) ^ k * v ^ k) by (rewrite <- Rpow_mult_distr; f_equal; ring).
+        assert (Sq : (-1) ^ k * (-1) ^ k = 1) by (rewrite <- Rpow_mult_distr; replace (-1 * -1) with 1 by ring; apply pow1).
+        unfold Rdiv. replace ((-1) ^ k * v ^ k * / INR (fact k) * ((-1) ^ k * Derive_n f k c)) with ((-1) ^ k * (-1) ^ k * (v ^ k * / INR (fact k) * Derive_n f k c)) by ring.
+        rewrite Sq. ring. }
+    match goal with |- Rabs (?a + ?r - ?a) <= _ => replace (a + r - a) with r by ring end.
+    assert (L := Last (- z) (- v) ltac:(lra) ltac:(lra)).
+    replace ((- v) ^ S K / INR (fact (S K)) * ((-1) ^ S K * Derive_n f (S K) (- z))) with ((-1) ^ S K * ((- v) ^ S K / INR (fact (S K)) * Derive_n f (S K) (- z))) by ring.
+    rewrite Rabs_mult, pow_1_abs, Rmult_1_l. exact L.
+  - rewrite Rplus_0_r. replace (sum_f_R0 _ K) with (f c).
+    + rewrite Rminus_diag_eq, Rabs_R0 by reflexivity. apply Rmult_le_pos; [exact B0|apply pow_le; lra].
+    + clear. induction K as [|K IH]; [cbn; field|]. cbn [sum_f_R0]. rewrite <- IH. rewrite pow_ne_zero by lia. unfold Rdiv. ring.
+  - destruct (Taylor_Lagrange f K c (c + v) ltac:(lra)) as [z [Hz E]].
+    { intros t Ht k Hk. apply D; [lra|exact Hk]. }
+    replace (c + v - c) with v in E by ring. rewrite E.
+    match goal with |- Rabs (?a + ?r - ?a) <= _ => replace (a + r - a) with r by ring end. apply Last; lra.
+Qed.
+
 (* Stance (3): x' = A x + b from s is Σ_j Φ_ij s_j + Φ_i0, Φ the solutions of x' = A x from unit vectors, Φ_0 of x' = A x + b from 0. *)
 Theorem flow (n : nat) (a b : R) (A : R -> matrix) (B : matrix) (free : R -> vector) (Phi : nat -> nat -> R -> R) (Phi0 x : nat -> R -> R) (s : vector) :
   a < b -> (forall i j t, (i < n)%nat -> (j < n)%nat -> a < t < b -> Rabs (A t i j) <= B i j) ->
