@@ -154,6 +154,35 @@ Proof.
     match type of Dm with is_derive _ _ ?d => replace 0 with d by ring end. exact Dm.
 Qed.
 
+(* Stance (6): for two states without damping and det Φ = 1 a change δ of state i at phase θ changes state i at touchdown by δ (Φ_ii(1)Φ_jj(θ) − Φ_ij(1)Φ_ji(θ)). *)
+Theorem growth_of_two (theta : R) (A : R -> matrix) (B : matrix) (free : R -> vector) (Phi : nat -> nat -> R -> R) (x y : nat -> R -> R) (i j : nat) (delta : R) :
+  theta < 1 -> (forall k l t, (k < 2)%nat -> (l < 2)%nat -> theta < t < 1 -> Rabs (A t k l) <= B k l) -> fundamental 2 theta A Phi ->
+  (i < 2)%nat -> j = (1 - i)%nat -> Phi i i theta * Phi j j theta - Phi i j theta * Phi j i theta = 1 ->
+  changed 2 theta A free x y i delta -> y i 1 - x i 1 = delta * (Phi i i 1 * Phi j j theta - Phi i j 1 * Phi j i theta).
+Proof.
+  intros L HB Fu Hi Ej Det [C [D S0]].
+  set (z := fun k t => x k t + (delta * Phi j j theta * Phi k i t + - (delta * Phi j i theta) * Phi k j t)).
+  assert (Hj : (j < 2)%nat) by lia.
+  assert (E : y i 1 = z i 1).
+  { apply (unique 2 theta 1 A B free y z L) with (i := i); trivial; try (unfold between; lra).
+    - intros k Hk. split; [apply (C k Hk)|]. unfold z.
+      apply (continuous_plus _ (x k) (fun t => delta * Phi j j theta * Phi k i t + - (delta * Phi j i theta) * Phi k j t)); [apply (C k Hk)|].
+      apply (continuous_plus _ (fun t => delta * Phi j j theta * Phi k i t) (fun t => - (delta * Phi j i theta) * Phi k j t)); apply continuous_scale; now apply Fu.
+    - intros k t Hk Ht. destruct (D k t Hk Ht) as [Dx Dy]. split; [exact Dy|]. unfold z.
+      replace (sum 2 (fun q => A t k q * (x q t + (delta * Phi j j theta * Phi q i t + - (delta * Phi j i theta) * Phi q j t))) + free t k) with
+        ((sum 2 (fun q => A t k q * x q t) + free t k) + (delta * Phi j j theta * sum 2 (fun q => A t k q * Phi q i t) + - (delta * Phi j i theta) * sum 2 (fun q => A t k q * Phi q j t))) by (cbn; ring).
+      apply (is_derive_plus (V := R_NormedModule) (x k) (fun t => delta * Phi j j theta * Phi k i t + - (delta * Phi j i theta) * Phi k j t)); [exact Dx|].
+      apply (is_derive_plus (V := R_NormedModule) (fun t => delta * Phi j j theta * Phi k i t) (fun t => - (delta * Phi j i theta) * Phi k j t)).
+      + apply (is_derive_scal (Phi k i)). now apply Fu.
+      + apply (is_derive_scal (Phi k j)). now apply Fu.
+    - intros k Hk. rewrite (S0 k Hk). unfold z. f_equal.
+      assert (K : k = i \/ k = j) by lia. destruct K as [->| ->].
+      + rewrite Nat.eqb_refl. replace (delta * Phi j j theta * Phi i i theta + - (delta * Phi j i theta) * Phi i j theta)
+          with (delta * (Phi i i theta * Phi j j theta - Phi i j theta * Phi j i theta)) by ring. rewrite Det. ring.
+      + replace (Nat.eqb j i) with false by (symmetry; apply Nat.eqb_neq; lia). ring. }
+  rewrite E. unfold z. ring.
+Qed.
+
 (* Stance (6): a push that grows by at most G until touchdown, with b' + G|δ| <= R and b' the error without it, leads no farther than R. *)
 Theorem push_within (e e' growth g delta b r : R) : Rabs e <= b -> e' = e + g * delta -> Rabs g <= growth -> b + growth * Rabs delta <= r -> Rabs e' <= r.
 Proof.
