@@ -74,7 +74,7 @@ def demo(folder: str) -> None:
             click.echo(f"wrote {target}", err=True)
     main_claim = home / "striding.toml"
     click.echo(f"proving {main_claim}: the same as `ultibound prove {main_claim}`", err=True)
-    sys.exit(_prove(main_claim, None, {}, False, home / "striding.html"))
+    sys.exit(_prove(main_claim, None, {}, False, report_to=home / "striding.html"))
 
 
 @cli.command()
