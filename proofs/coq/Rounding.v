@@ -205,3 +205,45 @@ Proof.
   { assert (e N = t N) by (unfold e; rewrite Z0; ring). destruct N as [|n]; [lia|]. assert (B := Small n). lra. }
   assert (B := Lost N HN). lra.
 Qed.
+
+(* Series 1, reciprocal: y <= E <= y + c in units, y at least 1 unit to 1: ⌊1/(y + c)⌋ is below 1/E, by less than c + 1 units. *)
+Theorem reciprocal (unit y c : Z) (E : R) : (0 < unit)%Z -> (unit <= y)%Z -> (0 <= c)%Z -> IZR y <= E * IZR unit <= IZR (y + c) ->
+  IZR (unit * unit / (y + c)) <= / E * IZR unit < IZR (unit * unit / (y + c)) + IZR c + 1.
+Proof.
+  intros P L Pc B. assert (Pu : 0 < IZR unit) by (apply (IZR_lt 0); trivial). assert (Pc' : 0 <= IZR c) by (apply (IZR_le 0); trivial).
+  assert (Ly : IZR unit <= IZR y) by now apply IZR_le. assert (Pe : 1 <= E) by (apply (Rmult_le_reg_r (IZR unit)); lra).
+  set (z := (y + c)%Z) in *. assert (Pz : (0 < z)%Z) by (unfold z; lia). assert (Pz' : 0 < IZR z) by (apply (IZR_lt 0); trivial).
+  assert (Ez : IZR z = IZR y + IZR c) by apply plus_IZR.
+  assert (F := floor_le (unit * unit) z Pz). assert (G := floor_gt (unit * unit) z Pz). rewrite mult_IZR in F, G.
+  assert (Low : IZR unit * IZR unit / IZR z <= / E * IZR unit).
+  { apply (Rmult_le_reg_r (IZR z * E)); [nra|]. replace (IZR unit * IZR unit / IZR z * (IZR z * E)) with (IZR unit * (E * IZR unit)) by (field; lra).
+    replace (/ E * IZR unit * (IZR z * E)) with (IZR unit * IZR z) by (field; lra). apply Rmult_le_compat_l; lra. }
+  assert (High : / E * IZR unit - IZR unit * IZR unit / IZR z <= IZR c).
+  { apply (Rmult_le_reg_r (IZR z * E)); [nra|]. replace ((/ E * IZR unit - IZR unit * IZR unit / IZR z) * (IZR z * E)) with (IZR unit * (IZR z - E * IZR unit)) by (field; lra).
+    assert (IZR unit * (IZR z - E * IZR unit) <= IZR unit * IZR c) by (apply Rmult_le_compat_l; lra).
+    assert (IZR unit * 1 <= IZR z * E) by (apply Rmult_le_compat; lra). nra. }
+  lra.
+Qed.
+
+(* Series 1, squaring: from 0 <= E − Y < c M, M = max(1, E), in units: 0 <= E² − ⌊Y²⌋ < (2c + 1) max(1, E²). *)
+Theorem squaring (unit Y : Z) (E c : R) : (0 < unit)%Z -> (0 <= Y)%Z -> 0 <= E * IZR unit - IZR Y < c * Rmax 1 E ->
+  0 <= E * E * IZR unit - IZR (Y * Y / unit) < (2 * c + 1) * Rmax 1 (E * E).
+Proof.
+  intros P PY B. assert (Pu : 0 < IZR unit) by (apply (IZR_lt 0); trivial). assert (PY' : 0 <= IZR Y) by (apply (IZR_le 0); trivial).
+  assert (F := floor_le (Y * Y) unit P). assert (G := floor_gt (Y * Y) unit P). rewrite mult_IZR in F, G.
+  assert (Pe : 0 <= E) by (apply (Rmult_le_reg_r (IZR unit)); lra).
+  set (y := IZR Y / IZR unit) in *. assert (Ey : IZR Y = y * IZR unit) by (unfold y; field; lra).
+  assert (Sq : IZR Y * IZR Y / IZR unit = y * y * IZR unit) by (rewrite Ey; field; lra). rewrite Sq in F, G. rewrite Ey in B.
+  assert (Py : 0 <= y) by (unfold y; apply Rmult_le_pos; [trivial|left; now apply Rinv_0_lt_compat]).
+  assert (Yle : y <= E) by (apply (Rmult_le_reg_r (IZR unit)); lra).
+  assert (D : E * E * IZR unit - y * y * IZR unit = (E * IZR unit - y * IZR unit) * (E + y)) by ring.
+  assert (M1 : Rmax 1 E * E <= Rmax 1 (E * E)) by (unfold Rmax; destruct (Rle_dec 1 E), (Rle_dec 1 (E * E)); nra).
+  assert (M2 : 1 <= Rmax 1 (E * E)) by apply Rmax_l.
+  assert (Hc : 0 <= c).
+  { apply Rnot_lt_le. intro N. assert (1 <= Rmax 1 E) by apply Rmax_l. nra. }
+  set (loss := E * IZR unit - y * IZR unit) in *.
+  assert (B2 : loss * (E + y) <= c * Rmax 1 E * (2 * E)) by (apply Rmult_le_compat; lra).
+  assert (B3 : c * Rmax 1 E * (2 * E) <= 2 * c * Rmax 1 (E * E)).
+  { replace (c * Rmax 1 E * (2 * E)) with (2 * c * (Rmax 1 E * E)) by ring. apply Rmult_le_compat_l; lra. }
+  assert (B4 : 0 <= loss * (E + y)) by (apply Rmult_le_pos; lra). split; [lra|]. nra.
+Qed.
