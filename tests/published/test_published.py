@@ -308,3 +308,27 @@ def test_elementary_constants() -> None:
     for entry, exact in zip(c.results["requirements"], CONSTANTS.values(), strict=True):
         assert entry["verdict"] == "proved"
         assert_encloses(entry["value"], exact, "1e-15")
+
+
+def test_minima_of_polynomials() -> None:
+    """D01 to D04: Motzkin 1967; Dixon & Szegö, Towards Global Optimisation 2, 1978; Parrilo, PhD thesis, Caltech 2000 (all
+    from memory; the minimum on the unit circle recomputed below); Lukács' certificate, Szegö, Orthogonal Polynomials (from memory)."""
+    motzkin, camel = "x**4*y**2 + x**2*y**4 + 1 - 3*x**2*y**2", "4*x**2 - 21*x**4/10 + x**6/3 + x*y - 4*y**2 + 4*y**4"
+    quartic = "2*x**4 + 2*x**3*y - x**2*y**2 + 5*y**4"
+    asked = (
+        (f"always({motzkin} >= -1e-6)", ""),
+        (f"value({camel})", "over = { x = [-3, 3] }"),
+        (f"always({camel} >= -1.031629)", "over = { x = [-3, 3] }"),
+        (f"always({quartic} >= 0.578179*(x**2 + y**2)**2 - 1e-6)", ""),
+        ("value(2 + 3*u - 4*u**3)", ""),
+        ("always(2 + 3*u - 4*u**3 >= 1 - 1e-6)", ""),
+    )
+    requirements = "".join(f'[[require]]\nthat = "{that}"\n{over}\n' for that, over in asked)
+    c = proved(
+        "format = 1\n[state]\nv = [-1, 1]\n[uncertain]\nx = [-2, 2]\ny = [-2, 2]\nu = [0, 1]\n"
+        f'[next]\nv = "v/2"\n[target]\nv = 0\n[effort]\ngap = 1e-6\n{requirements}'
+    )
+    assert c.proved
+    low, _ = ends(c.results["requirements"][1]["value"])
+    assert 0 <= Fraction("-1.03162845348987735041") + Fraction("1e-20") - low <= Fraction("1e-6") * 2
+    assert_encloses(c.results["requirements"][4]["value"], "2", 1 + Fraction("1e-5"))  # the range is [1, 3]

@@ -17,10 +17,11 @@ import numpy as np
 
 from ultibound.bounding.evaluate import Runner
 from ultibound.bounding.search import Effort, search
+from ultibound.certificate.squares import Asked, Squares
 from ultibound.checker import check
-from ultibound.claim import parse_claim
+from ultibound.claim import Claim, parse_claim
 from ultibound.claim.obligations import Domain, Obligations
-from ultibound.prove import prove
+from ultibound.prove import Attempt, prove
 from ultibound.stepmap.symbolic import compiled
 
 SAMPLES = 10**6
@@ -62,6 +63,37 @@ def library(speeds: int, periods: int) -> tuple[str, dict[str, str]]:
     return text, {"gaits.csv": "\n".join(rows) + "\n"}
 
 
+def two_arguments(claim: Claim) -> None:
+    """The sensitivity of the same claim by subdivision and by sums of squares, the solver loaded beforehand."""
+    number = next(n for n, r in enumerate(claim.requirements, 1) if r.kind == "sensitivity")
+    attempt = Attempt(claim, 1e-3, time.monotonic() + 600, lambda stage, leaves, high: None, False)
+    lines = attempt.writer.proof.lines
+    ranged, squared = (
+        next(x for x in lines.values() if (x.rule, x.proves) == (rule, f"require[{number}]"))
+        for rule in ("range", "squares")
+    )
+    on = next(n for n in squared.uses if lines[n].domain is not None)
+    domain = attempt.obligations.requirement(
+        number, Domain("region", claim.values["kappa"][0] * 4, (claim.values["kappa"][0] * 4,) * 2)
+    )
+    asked = Asked(
+        f"require[{number}]",
+        on,
+        {"lower": math.inf, "upper": -math.inf},
+        1e-3,
+        time.monotonic() + 600,
+        lambda stage, leaves, high: None,
+    )
+    by_range, _ = timed(lambda: attempt.ranges.enclose(domain, on))
+    by_squares, _ = timed(lambda: Squares(attempt.writer, asked).line())
+    print(
+        f"sensitivity: by subdivision {by_range:.3f} s (aim <= 0.1), by sums of squares {by_squares:.3f} s (aim <= 1)"
+    )
+    for end in ("lower", "upper"):
+        a, b = float(ranged.concludes[end]), float(squared.concludes[end])
+        print(f"  {end} end {a:.6g} and {b:.6g}, apart by {abs(a - b) / abs(a):.1e} of it  (aim <= 1e-3)")
+
+
 def main() -> None:
     text = (resources.files("ultibound.examples") / "pendulum.toml").read_text()
     claim = parse_claim(text, {}, {}, "pendulum.toml")
@@ -83,6 +115,7 @@ def main() -> None:
     print(f"  proved-side estimate over sampled: {found[0].upper / worst[0]:.5f}, {found[1].upper / worst[1]:.5f}")
     whole, certificate = timed(lambda: prove(claim))
     print(f"whole prove / Monte Carlo: {whole / sampling:.1f}  (aim <= 10)")
+    two_arguments(claim)
     data = certificate.to_bytes()
     checking, verdict = timed(lambda: check(data))
     print(

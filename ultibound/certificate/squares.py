@@ -10,6 +10,7 @@ from collections.abc import Callable, Mapping
 from dataclasses import dataclass
 from fractions import Fraction
 from itertools import product
+from math import inf, isinf
 from typing import Any
 
 from ..checker.models import Exponents
@@ -19,7 +20,7 @@ from ..checker.reals import Undefined
 from ..checker.rules import Rejected
 from ..checker.squares import LEAF, expansion_of, shown
 from ..polynomial.truncation import truncated
-from ..positivity.bounds import bounded_below
+from ..positivity.bounds import bounded_below, least_sampled
 from .lines import Writer
 
 BITS = 56
@@ -31,6 +32,7 @@ DEGREE = 12  # up to which an exact polynomial is left as it is
 SHARE = 4  # the remainder, and what is cut off, may each take one part in so many of the gap
 LEAST, NOTHING = 0.02, 1e-6  # share of the spread of a polynomial that counts as its size near zero; and at least
 
+SIGNS = {"lower": 1, "upper": -1}
 TREE = list[str]
 
 
@@ -86,11 +88,22 @@ class Squares:
         return witness, expansion_of(self.writer.derivation, self.meaning, witness, self.writer.flows())
 
     def budget(self, near: Polynomial) -> float:
-        """How far off bounds may be: the gap times the least magnitude, or a share of the spread near zero."""
+        """How far off bounds may be: by the gap, or as far as what would be enough leaves room at all."""
         count = len(self.meaning.variables)
         middle = abs(float(near.get((0,) * count, Fraction(0))))
         far = float(size(count, {e: c for e, c in near.items() if any(e)}))
-        return self.asked.gap * max(middle - far, LEAST * far, NOTHING)
+        found = self.asked.gap * max(middle - far, LEAST * far, NOTHING)
+        return min([found, *(room for name in self.asked.enough if 0 < (room := self.room(near, name)) < inf)])
+
+    def room(self, near: Polynomial, name: str) -> float:
+        """Between what would be enough and the end that samples show; negative where it cannot be reached."""
+        sign, enough = SIGNS[name], self.asked.enough[name]
+        if isinf(enough):
+            return inf
+        count = len(self.meaning.variables)
+        return (
+            least_sampled({e: sign * c for e, c in near.items()} or {(0,) * count: Fraction(0)}, count) - sign * enough
+        )
 
     def divided(self, expansion: Expansion, box: Box, others: int) -> TREE:
         """The splitting tree of a box whose parts have squares; `others`: boxes that come after it."""
@@ -136,13 +149,14 @@ class Squares:
         stated: dict[str, Any] = {"polynomial": written(p)}
         close = True
         for name, enough in self.asked.enough.items():
-            sign = 1 if name == "lower" else -1
+            sign = SIGNS[name]
             found, low, said = bounded_below({e: sign * c for e, c in p.items()}, budget / SHARE, sign * enough + off)
             self.said = "; ".join(said)
             if found is None:
                 return None, False
             bound = float(found.bound)
-            close &= bound - off >= sign * enough or (bound >= low - budget and SHARE * rest <= budget)
+            near_enough = bound >= low - budget and SHARE * rest <= budget
+            close &= bound - off >= sign * enough or (near_enough and not 0 < self.room(near, name) < inf)
             squares = [[str(w), n, written(q)] for w, n, q in found.squares]
             stated[name] = {"bound": str(sign * found.bound), "squares": squares}
         return stated, close

@@ -45,7 +45,9 @@ def least_sampled(p: dict[Exponents, Fraction], count: int) -> float:
 def bounded_below(
     p: dict[Exponents, Fraction], gap: float, enough: float = inf
 ) -> tuple[Identity | None, float, list[str]]:
-    """An identity whose bound is at least `enough`, or within `gap` of the smallest value sampled; else the best found.
+    """An identity whose bound is at least `enough` where samples let it be, else within `gap` of the smallest of them.
+
+    The best found, where none is that good.
 
     Also that value, and what every solver said.
     """
@@ -53,10 +55,11 @@ def bounded_below(
     active = [i for i in range(count) if any(e[i] for e in p)]
     inner = {tuple(e[i] for i in active): c for e, c in p.items()}
     low, said, best = least_sampled(inner, len(active)), list[str](), None
+    wanted = enough if enough <= low else low - gap
     for found in identities(inner, len(active), said):
         if best is None or found.bound > best.bound:
             best = found
-        if float(found.bound) >= min(enough, low - gap):
+        if float(found.bound) >= wanted:
             break
     return None if best is None else placed(best, active, count), low, said
 

@@ -25,7 +25,7 @@ from ..checker.rules import Rejected
 from ..checker.theorems import levels, movement, sharpest
 from ..claim import Bad, Claim, ClaimError
 from ..claim.constants import constant
-from ..claim.obligations import RANGED, Domain, Obligations
+from ..claim.obligations import RANGED, Domain, Obligation, Obligations
 from ..claim.provable import varied
 from ..contraction.curve import Profile, inward
 from ..contraction.orbits import Steering, orbits, slow_path
@@ -44,6 +44,7 @@ MOST_ROUGH = 300  # cells of a library over which no curve is followed unless on
 ROUGH, QUICK, FEW, MOST = 3e-2, 8, 1, 60  # gap, leaves a shell and shells of a rough curve; shells of a sharp one
 PARTS, PARTED = (1, 4), 1.05  # of a stance for signals of any course, and the ratio to constant ones that is enough
 SQUARED_GAP = 1e-3  # of sums of squares
+FIRST = 200  # leaves, beside eight a cell, for an inequality before sums of squares are tried
 COURSE_GAP = 1e-3  # each part adds a phase and a value of every signal
 ASKED, UNASKED = 200, 60  # leaves, beside two a cell, where a requirement is about the gain and where none is
 TRIED = 4  # orbits, the furthest first
@@ -248,18 +249,7 @@ class Attempt:
         try:
             obligation = self.obligations.requirement(number, domain)
             if r.kind in ("always", "throughout"):
-                side = 1 if r.relation in ("<", "<=") else -1
-                found = self.ranges.search(obligation, False, DECIDED, side=side)
-                near = (
-                    min(found.upper * side, found.lower * side) < 0 or (found.upper if side > 0 else -found.lower) < 0
-                )
-                gap, half = (DECIDED, side) if near else (0.0, 0)
-                shown = self.ranges.enclose(obligation, on, points=points, gap=gap, side=half)
-                ends = (
-                    None if shown is None else (shown.upper, shown.most) if side > 0 else (-shown.lower, -shown.least)
-                )
-                if ends is None or ends[1] <= 0 < ends[0]:  # neither shown nor refuted
-                    self._squared(number, on, {"upper" if side > 0 else "lower": 0.0})
+                self._inequality(number, obligation, on, points)
                 return
             self.ranges.enclose(obligation, on, points=points)
             if r.kind == "sensitivity":  # by an argument of its own, as near as another
@@ -267,15 +257,36 @@ class Attempt:
         except Bad as why:
             self.ranges.limits[name] = str(why)
 
-    def _squared(self, number: int, on: int, enough: dict[str, float]) -> None:
-        """Ends of a requirement by sums of squares, which use nothing of its range: proofs/squares.md."""
+    def _inequality(self, number: int, obligation: Obligation, on: int, points: bool) -> None:
+        """Left minus right; sums of squares are tried before subdivision is taken to its limit."""
+        side = 1 if self.claim.requirements[number - 1].relation in ("<", "<=") else -1
+        few = min(FIRST + 8 * prod(len(v.cells) for v in obligation.variables), self.claim.cells)
+        found = self.ranges.search(obligation, False, DECIDED, side=side, cells=few)
+        if found.stopped == "cells" and self._squared(number, on, {"upper" if side > 0 else "lower": 0.0}):
+            self.ranges.enclose(obligation, on, points=points, gap=DECIDED, side=side, cells=min(UNASKED, few))
+            return
+        if found.stopped == "cells" and few < self.claim.cells:
+            found = self.ranges.search(obligation, False, DECIDED, side=side)
+        if min(found.upper * side, found.lower * side) < 0 or (found.upper if side > 0 else -found.lower) < 0:
+            self.ranges.enclose(obligation, on, points=points, gap=DECIDED, side=side)
+        else:
+            self.ranges.enclose(obligation, on, points=points)
+
+    def _squared(self, number: int, on: int, enough: dict[str, float]) -> bool:
+        """Ends of a requirement by sums of squares, which use nothing of its range: proofs/squares.md.
+
+        Whether they are enough.
+        """
         name = f"require[{number}]"
         asked = Asked(name, on, enough, SQUARED_GAP, self.until - self.ranges.spent, self.watch)
         try:
-            _, why = Squares(self.writer, asked).line()
-            self.ranges.limits[f"squares of {name}"] = why
+            line, why = Squares(self.writer, asked).line()
         except KeyboardInterrupt:
             self.ranges.interrupt()
+            return False
+        self.ranges.limits[f"squares of {name}"] = why
+        shown = {} if line is None else self.writer.proof.lines[line].concludes
+        return bool(shown) and all(x >= enough[n] if n == "lower" else x <= enough[n] for n, x in shown.items())
 
     def _over(self, number: int) -> None:
         """A requirement over ranges of its own: a proof of the same kind, whose lines are taken in."""
