@@ -24,7 +24,6 @@ LARGEST = 20.0  # times the sizes of the states, at which growing has failed
 ANGLES = 8  # directions of two states
 POWERS = 4  # of the middle Jacobian, whose rows are directions of more states
 NEAR = 1 - 1e-4  # cosine of directions that count as one
-MOST = 7000  # choices of rows and sides
 Ends = tuple[Floats, Floats]
 
 
@@ -73,8 +72,11 @@ def _rest(x: Leaf) -> object:
     return x.rest
 
 
-def directions(middle: Floats, sizes: Floats, noise: Floats) -> Floats:
-    """Rows of V, |row| · sizes = 1: the states, what leads to them, directions spread where e⁺ = A e + noise goes."""
+def directions(middle: Floats, sizes: Floats, noise: Floats, most: int) -> Floats:
+    """Rows of V, |row| · sizes = 1: the states, what leads to them, directions spread where e⁺ = A e + noise goes.
+
+    `most`: choices of as many of them as there are states, and sides, as vertices are found among.
+    """
     n = len(middle)
     spread, power = np.zeros((n, n)), np.diag(noise)
     for _ in range(STEPS):
@@ -90,7 +92,7 @@ def directions(middle: Floats, sizes: Floats, noise: Floats) -> Floats:
         tried.append(np.array([s for s in product((-1, 0, 1), repeat=n) if s > (0,) * n]) @ root)
     found: list[Floats] = []
     for row in np.vstack(tried) * sizes:
-        if (len(found) + 1 > n and comb(len(found) + 1, n) * 2**n > MOST) or not np.abs(row).sum() > 0:
+        if (len(found) + 1 > n and comb(len(found) + 1, n) * 2**n > most) or not np.abs(row).sum() > 0:
             continue
         if all(abs(row @ x) < NEAR * np.linalg.norm(row) * np.linalg.norm(x) for x in found):
             found.append(row / np.abs(row).sum())

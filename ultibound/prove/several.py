@@ -338,7 +338,7 @@ class SeveralAttempt(Attempt):
             began = time.monotonic()
             try:
                 leaves = w.leaves(proves, found.trees, bits, on)
-                line = w.matrix(proves, found.trees, bits, on, leaves)
+                line = w.matrix(proves, found.trees, bits, on, leaves, found.upper)
             except (Undefined, Rejected) as why:
                 self.ranges.limits[proves] = str(why)
                 if not bits:  # fractions that grow too long
