@@ -19,7 +19,7 @@ def positive(seed: int) -> Polynomial:
     rng = random.Random(seed)
     powers = [e for e in product(range(degree + 1), repeat=count) if sum(e) <= degree]
     p = {e: Fraction(rng.randint(-100, 100), 100) for e in powers}
-    p[(0,) * count] += MARGIN - Fraction(round(least_sampled(p, count) * 10**4), 10**4)
+    p[(0,) * count] += MARGIN - Fraction(round(least_sampled(p, count)[0] * 10**4), 10**4)
     return {e: c for e, c in p.items() if c}
 
 

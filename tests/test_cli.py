@@ -129,7 +129,8 @@ EXTRA
     ("asin(2*v)", "", "asin of a number beyond 1"),
     ("v/2 + a*b*c", "", "combinations"),
     ("v/2", "[[require]]\nthat = 'value(log(v))'", "logarithm"),
-    ("v/2", "route = 'sector'", "sector cannot be proved yet"),
+    ("v/2", "route = 'sector'", "name exactly one in `correction`"),
+    ("v/2", "route = 'sector'\ncorrection = ['half']\nhorizon = 2\ndefine = { half = 'v/2' }", "one step at a time"),
     ("v/2", "route = 'split'", "name it in `correction`"),
 ])  # fmt: skip
 def test_what_cannot_be_used_is_said_in_one_line(next_: str, extra: str, said: str, tmp_path: Path) -> None:
@@ -305,7 +306,9 @@ def test_the_same_bytes_again(tmp_path: Path, certificate: Path) -> None:
 
 @pytest.mark.parametrize("top, that, verdict, said", [
     ("", "gain < 0.4", "refuted", None),
-    ('correction = ["half"]\n', "gain < 0.4", "undecided", "the sector route is not tried yet"),
+    ('correction = ["half"]\n', "gain < 0.4", "refuted", None),
+    ('correction = ["half"]\nshrink = true\n', "gain < 0.4", "undecided", "another route or set may do better"),
+    ('correction = ["half"]\nroute = "sector"\n', "gain < 1.4", "refuted", None),
     ('correction = ["half"]\nroute = "slope"\n', "gain < 0.4", "refuted", None),
     ("", "bound(v) < 0.001", "refuted", None),
     ("", "gain <= 0.5", "proved", None),

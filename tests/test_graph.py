@@ -13,7 +13,7 @@ import pytest
 
 from tests.conftest import assert_encloses, ends, proved
 from ultibound.checker import check
-from ultibound.claim import ClaimError
+from ultibound.claim import ClaimError, parse_claim
 
 
 def graph(stances: dict[str, tuple[str, Any, str, str]], *asked: str, top: str = "", rest: str = "w = [-1, 1]") -> str:
@@ -353,15 +353,13 @@ def test_the_command_shows_every_stance() -> None:
 
     from ultibound.report.terminal import outcome
 
-    r = proved(
-        graph(
-            {"a": ("b", "[-1, 1]", "0", "x/2 + 0.01*w"), "b": ("a", "[-1, 1]", "0", "x/3")},
-            "settles",
-            '"settles"\nin = "a"',
-        )
-    ).results
+    text = graph(
+        {"a": ("b", "[-1, 1]", "0", "x/2 + 0.01*w"), "b": ("a", "[-1, 1]", "0", "x/3")},
+        "settles",
+        '"settles"\nin = "a"',
+    )
     console = Console(record=True, width=120, file=StringIO())
-    console.print(outcome("title", r, {"x": "m"}, [None, "a"]))
+    console.print(outcome(parse_claim(text, {}, {}, "claim.toml"), proved(text).results))
     text = console.export_text()
     assert all(
         x in text for x in ("stance", "│ x     │ 0", "settles in a", "certified set: the region of every stance")

@@ -35,6 +35,7 @@ PROOFS = (
     "results",
     "holding",
     "derive",
+    "sector",
     "horizon",
     "document",
     "__init__",

@@ -536,6 +536,7 @@ def test_a_rule_or_use_exchanged_is_rejected(entries: dict[str, Any]) -> None:
             "point",
             "slope",
             "split",
+            "sector",
             "curve",
             "shells",
             "orbit",

@@ -68,8 +68,8 @@ def test_positive_polynomials(seed: int) -> None:
 @pytest.mark.parametrize(
     ("that", "verdict"),
     [
-        ("always(p >= 0)", "proved"), ("always(p > -0.001)", "proved"), ("always(p >= 0.03)", "undecided"), ("always(-p <= 0)", "proved"),
-        ("always(-p < -0.03)", "undecided"),
+        ("always(p >= 0)", "proved"), ("always(p > -0.001)", "proved"), ("always(p >= 0.03)", "refuted"), ("always(-p <= 0)", "proved"),
+        ("always(-p < -0.03)", "refuted"),
     ],
 )  # fmt: skip
 def test_an_inequality_on_either_side(that: str, verdict: str) -> None:

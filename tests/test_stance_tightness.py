@@ -17,6 +17,7 @@ import pytest
 
 from tests.conftest import ends, proved
 from tests.simulation import Gaits, Quantity, Values, Walk, nominal
+from ultibound.report.accepted import accepted_here
 from ultibound.report.cells import residual_by_cell
 
 SECOND = "12/T**2*bezier(t/T, z0 - 2*z1 + z2, 2*z1 - 2*z2, z0 - 2*z1 + z2)"  # of the curve of heights
@@ -83,7 +84,7 @@ def one_dimension(spacing: str) -> tuple[float, float]:
     """The residual proved and sampled, over 0.9 m/s of speeds."""
     walk = spaced({"v": lines(0.1, 1.0, float(spacing))})
     certificate = proved(walk.text(), data=walk.data)
-    results, cells = certificate.results, residual_by_cell(certificate)
+    results, cells = certificate.results, residual_by_cell(accepted_here(certificate))
     assert results["set"]["kind"] == "region" and len(cells) == round(0.9 / float(spacing))
     most = max(float(c.residual) for c in cells)
     assert most <= float(ends(results["routes"]["split"]["residual"])[1]) <= most * (1 + 1e-9)
@@ -125,7 +126,7 @@ def test_every_cell_by_itself(spacing: str) -> None:
 def test_residual_over_speeds_and_periods() -> None:
     walk = spaced({"v": lines(0.1, 1.0, 0.15), "T": lines(0.36, 0.44, 0.04)})
     certificate = proved(walk.text(), data=walk.data)
-    cells = residual_by_cell(certificate)
+    cells = residual_by_cell(accepted_here(certificate))
     assert len(cells) == 12
     worst = []
     for c in cells:
@@ -150,7 +151,7 @@ def test_residual_over_four_axes() -> None:
         "0.08",
     )
     certificate = proved(walk.text(), data=walk.data)
-    cells = residual_by_cell(certificate)
+    cells = residual_by_cell(accepted_here(certificate))
     assert len(cells) == 2
     places = [(n, np.linspace(float(x[0]), float(x[-1]), 41 if n == "v" else 9)) for n, x in walk.gaits.axes.items()]
     worst = sampled(walk, [(n.removesuffix("_node"), x) for n, x in places]).max()

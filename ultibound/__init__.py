@@ -6,6 +6,8 @@
 from __future__ import annotations
 
 import sys
+from collections.abc import Callable
+from importlib import import_module
 from types import ModuleType
 from typing import TYPE_CHECKING, Any
 
@@ -26,15 +28,31 @@ _HOMES = {
     "read_claim": ".claim",
     "prove": ".prove",
 }
+_SHOWN = {"Claim": "claim", "Certificate": "certificate"}
+_GIVES = {"read_claim": "Claim", "prove": "Certificate"}
 
 
 def __getattr__(name: str) -> Any:
     """Loads a public name's module on first use: the checker must not wait for numpy and sympy."""
     if name not in _HOMES:
         raise AttributeError(f"module {__name__!r} has no attribute {name!r}")
-    from importlib import import_module
+    found = getattr(import_module(_HOMES[name], __name__), name)
+    if name in _SHOWN:
+        for shape in ("html", "latex"):
+            setattr(found, f"_repr_{shape}_", _shown(f"{_SHOWN[name]}_{shape}"))
+    elif name in _GIVES:  # so that what it gives is shown too
+        __getattr__(_GIVES[name])
+    return found
 
-    return getattr(import_module(_HOMES[name], __name__), name)
+
+def _shown(display: str) -> Callable[[Any], str]:
+    """A notebook's display of a value: of the report, which stands below claims and certificates and is loaded late."""
+
+    def inner(value: Any) -> str:
+        found: str = getattr(import_module(".report.notebook", __name__), display)(value)
+        return found
+
+    return inner
 
 
 class _Package(ModuleType):

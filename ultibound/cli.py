@@ -49,9 +49,7 @@ def prove(claim: str, output: str | None, settings: tuple[str, ...], gain_interv
 
     Exit status: 0 every requirement is proved, 1 one is not, 2 the input cannot be used, 130 interrupted.
     """
-    if gain_interval is not None:
-        raise click.UsageError("--gain-interval: gain intervals cannot be proved yet; use --set with single gains")
-    sys.exit(_prove(Path(claim), Path(output) if output else None, _settings(settings), as_json))
+    sys.exit(_prove(Path(claim), Path(output) if output else None, _settings(settings), as_json, gain_interval))
 
 
 @cli.command()
@@ -59,7 +57,7 @@ def prove(claim: str, output: str | None, settings: tuple[str, ...], gain_interv
               help="Folder for the example claims and the certificate.")  # fmt: skip
 @pipe_told_apart
 def demo(folder: str) -> None:
-    """Write the example claims into a folder and prove the main one. Exit status as for prove."""
+    """Write the example claims into a folder, prove the main one, write its report. Exit status as for prove."""
     from importlib import resources
 
     from .certificate.certificate import write_whole
@@ -76,7 +74,7 @@ def demo(folder: str) -> None:
             click.echo(f"wrote {target}", err=True)
     main_claim = home / "striding.toml"
     click.echo(f"proving {main_claim}: the same as `ultibound prove {main_claim}`", err=True)
-    sys.exit(_prove(main_claim, None, {}, False))
+    sys.exit(_prove(main_claim, None, {}, False, report_to=home / "striding.html"))
 
 
 @cli.command()
@@ -96,6 +94,74 @@ def check(certificate: str, claim: str | None, all_proved: bool, as_json: bool, 
     sys.exit(run(certificate, claim, all_proved, as_json, lines))
 
 
+@cli.command()
+@click.argument("certificate", type=click.Path())
+@click.option("-o", "--output", type=click.Path(), help="FILE.html, .tex or .md [CERTIFICATE with .html].")
+@pipe_told_apart
+def report(certificate: str, output: str | None) -> None:
+    """Check CERTIFICATE and write the document a person reads.
+
+    Exit status: 0 written, 2 the certificate does not hold or cannot be used.
+    """
+    from .report.writing import write_report
+
+    sys.exit(_made(certificate, lambda: write_report(Path(certificate), Path(output) if output else None)))
+
+
+@cli.command()
+@click.argument("certificate", type=click.Path())
+@click.option("-o", "--output", type=click.Path(), required=True, help="The zip to write.")
+@pipe_told_apart
+def bundle(certificate: str, output: str) -> None:
+    """Check CERTIFICATE and write a supplement: certificate, claim, data, report and stand-alone checker in a zip.
+
+    Exit status: 0 written, 2 the certificate does not hold or cannot be used.
+    """
+    from .report.writing import write_bundle
+
+    sys.exit(_made(certificate, lambda: write_bundle(Path(certificate), Path(output))))
+
+
+@cli.command()
+@click.argument("claim", type=click.Path())
+@click.option("--set", "settings", multiple=True, metavar="GAIN=VALUE", help="Replace a gain of the claim.")
+@click.option("--latex", "as_latex", is_flag=True, help="Print a LaTeX document instead of plain text.")
+@pipe_told_apart
+def explain(claim: str, settings: tuple[str, ...], as_latex: bool) -> None:
+    """Say what was understood of CLAIM: map, linearisation, ranges, obligations. Nothing is proved.
+
+    Exit status: 0, 2 the input cannot be used.
+    """
+    from .claim import ClaimError, read_claim
+    from .report.latex import latex
+    from .report.plain import plain
+    from .report.statement import explained
+
+    try:
+        document = explained(read_claim(Path(claim), _settings(settings)))
+    except ClaimError as why:
+        click.echo(str(why), err=True)
+        sys.exit(2)
+    click.echo(latex(document).decode() if as_latex else plain(document), nl=False)
+
+
+def _made(certificate: str, write: Callable[[], Path]) -> int:
+    """Writes what a certificate is made into; the exit status."""
+    from .claim.errors import printable
+    from .report.accepted import NotAccepted
+
+    try:
+        target = write()
+    except NotAccepted as why:
+        click.echo(printable(f"{certificate}: {why}; nothing was written"), err=True)
+        return 2
+    except OSError as why:
+        click.echo(printable(f"{why.filename or certificate}: {why.strerror or why}"), err=True)
+        return 2
+    click.echo(f"wrote {target}", err=True)
+    return 0
+
+
 def _settings(settings: tuple[str, ...]) -> dict[str, str]:
     found: dict[str, str] = {}
     for item in settings:
@@ -106,9 +172,17 @@ def _settings(settings: tuple[str, ...]) -> dict[str, str]:
     return found
 
 
-def _prove(path: Path, output: Path | None, settings: dict[str, str], as_json: bool) -> int:
+def _prove(
+    path: Path,
+    output: Path | None,
+    settings: dict[str, str],
+    as_json: bool,
+    gain_interval: str | None = None,
+    report_to: Path | None = None,
+) -> int:
     from .claim import ClaimError, read_claim
     from .prove import prove as proved
+    from .report.accepted import accepted_here
     from .report.cells import residual_by_cell, residual_wanted
     from .report.terminal import cells, outcome, show
 
@@ -120,7 +194,7 @@ def _prove(path: Path, output: Path | None, settings: dict[str, str], as_json: b
         if target.exists() and any(target.samefile(path.parent / f) for f in (path.name, *claim.data)):
             raise FileExistsError(17, "is the claim or its data; name another file for the certificate", str(target))
         with Progress() as progress:
-            certificate = proved(claim, progress)
+            certificate = proved(claim, progress, gain_interval)
         certificate.write(target)
     except ClaimError as why:
         click.echo(str(why), err=True)
@@ -128,15 +202,17 @@ def _prove(path: Path, output: Path | None, settings: dict[str, str], as_json: b
     except OSError as why:
         click.echo(f"{why.filename or path}: {why.strerror or why}", err=True)
         return 2
-    units = {n: q.unit for n, q in claim.stances[0].states.items()}
-    unit = next(iter(units.values()))
-    asked = [r.stance for r in claim.requirements]
-    show(outcome(claim.title or path.name, certificate.results, units, asked, claim.horizon), as_json)
+    show(outcome(claim, certificate.results), as_json)
     if "split" in certificate.results["routes"]:
-        found = residual_by_cell(certificate)
+        found = residual_by_cell(accepted_here(certificate))
         if len(found) > 1:
+            unit = next(iter(claim.stances[0].states.values())).unit
             show(cells(found, unit, residual_wanted(claim, certificate.results, found)), as_json)
     click.echo(f"certificate: {target}  (re-verify: ultibound check {target})", err=as_json)
+    if report_to is not None:
+        from .report.writing import write_report_of
+
+        click.echo(f"report: {write_report_of(certificate, report_to)}", err=as_json)
     if as_json:
         click.echo(json.dumps({**certificate.results, "certificate": str(target)}, ensure_ascii=False, sort_keys=True))
     if certificate.interrupted:

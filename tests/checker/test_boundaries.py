@@ -86,8 +86,8 @@ class Draft:
 
     def route(self) -> str:
         """The one asked for, else the one with the least bound, else the first."""
-        asked = re.search(r'^route = "(slope|split|curve)"$', self.text, re.MULTILINE)
-        names = [r for r in ("slope", "split", "curve") if any(x["rule"] == r for x in self.proof)]
+        asked = re.search(r'^route = "(slope|split|sector|curve)"$', self.text, re.MULTILINE)
+        names = [r for r in ("slope", "split", "sector", "curve") if any(x["rule"] == r for x in self.proof)]
         bounds = {x["proves"][6:-1]: Q(x["concludes"]["bound"]) for x in self.proof if x["rule"] == "ultimate-bound"}
         return asked[1] if asked else min(names, key=lambda r: bounds.get(r, Q(10**9)), default="slope")
 
@@ -123,7 +123,9 @@ class Draft:
                 "sharp_bound": None,
                 "radius": None,
                 "states": {state: {"bound": None, "sharp_bound": None, "radius": None, "push": None}},
-                "routes": {x["rule"]: dict(nothing) for x in self.proof if x["rule"] in ("slope", "split", "curve")},
+                "routes": {
+                    x["rule"]: dict(nothing) for x in self.proof if x["rule"] in ("slope", "split", "sector", "curve")
+                },
                 "metric": {"kind": "box", "weights": {state: "1"}},
                 "sensitivities": list(sensitivities),
                 "gain_intervals": [],
@@ -158,20 +160,27 @@ class Case:
             assert verdict.leaves == self.leaves, verdict
 
 
-CASES: dict[str, Question] = {}
+class Questions(dict[str, Question]):
+    """Questions to a checker, each name once."""
+
+    def add(self, name: str, question: Question) -> None:
+        assert name not in self, name
+        self[name] = question
+
+    def unit(self, question: Question) -> Question:
+        """Registers assertions about functions of the checker."""
+        self.add(question.__name__, question)
+        return question
+
+    def accept(self, name: str, entries: Entries, leaves: int | None = None) -> None:
+        self.add(name, Case(sealed(entries), "valid", leaves=leaves))
+
+    def reject(self, name: str, entries: Entries, place: str, reason: str) -> None:
+        self.add(name, Case(sealed(entries), "invalid", place, reason))
 
 
-def add(name: str, question: Question) -> None:
-    assert name not in CASES, name
-    CASES[name] = question
-
-
-def accept(name: str, entries: Entries, leaves: int | None = None) -> None:
-    add(name, Case(sealed(entries), "valid", leaves=leaves))
-
-
-def reject(name: str, entries: Entries, place: str, reason: str) -> None:
-    add(name, Case(sealed(entries), "invalid", place, reason))
+CASES = Questions()
+unit, accept, reject = CASES.unit, CASES.accept, CASES.reject
 
 
 def but(entries: Entries, *changes: Any) -> Entries:
@@ -195,12 +204,6 @@ class _Gone:
 
 
 GONE = _Gone()
-
-
-def unit(question: Question) -> Question:
-    """Registers assertions about functions of the checker."""
-    add(question.__name__, question)
-    return question
 
 
 def verdicts(
@@ -854,11 +857,12 @@ def routes() -> None:
         text = claim("v/2 + w*f", requires=asked, top=top, rest="[define]\nf = 1")
         d = region(text)
         verdicts(f"correction, {name}", d, "region", [(asked[0], verdict), (asked[1], "refuted"), (asked[2], "proved")])
-    sector = but(BASE, "claim text", claim(top='route = "sector"\ncorrection = ["f"]', rest="[define]\nf = 1"))
-    reject("a claim of the route sector", sector, "claim", "only the routes slope, split and curve can be checked")
+    for top in ("", '\ncorrection = ["f", "g"]', '\ncorrection = ["f"]\nhorizon = 2'):
+        sector = but(BASE, "claim text", claim(top='route = "sector"' + top, rest="[define]\nf = 1\ng = 1"))
+        reject(f"a claim of the route sector{top}", sector, "claim", "the route sector is known for one state, one step and one correction")
     two = but(BASE, "claim text", claim(top="horizon = 2"))
     reject("a claim of two steps", two, "proof line 5", "slope[v,v]: the range shown is wider than what is concluded")
-    for top, route in (('route = "curve"', "curve"), ('route = "split"\ncorrection = ["f"]', "split")):
+    for top, route in (('route = "curve"', "curve"), ('route = "split"\ncorrection = ["f"]', "split"), ('route = "sector"\ncorrection = ["f"]', "sector")):
         changed = but(BASE, "claim text", claim(top=top, rest="[define]\nf = 1"))
         reject(f"a claim of {top}", changed, "results", f"results.route: 'slope' is claimed, '{route}' was derived")
     for top in ("horizon = 1", "shrink = false", "shrink = true", 'route = "slope"'):
@@ -1524,12 +1528,12 @@ def splits() -> None:
         reject(f"split uses {uses}", but(good, "proof 6 uses", uses), "proof line 7", "split rests on range split-slope[v,v], range split-residual[v]")
     text = good["claim"]["text"]
     reject("split without a correction", but(good, "claim text", text.replace(top, "")), "proof line 5", "split-slope[v,v] is no obligation")
-    best = Draft(claim("v/2 - f/4 + w", "[-1, 1]", 'w = ["-1/8", "1/8"]', requires=["gain <= 0.25", "gain < 0.25"], top='correction = ["f"]', rest='[define]\nf = "v"'))
+    best = Draft(claim("v/2 - f/4 + w", "[-1, 1]", 'w = ["-1/8", "1/8"]', requires=["gain <= 0.25", "gain < 0.25"], top='correction = ["f", "g"]', rest='[define]\nf = "v"\ng = "0"'))
     best.proof = [*copy.deepcopy(d.proof[:7]), *copy.deepcopy(d.proof[8:])]
     slope, miss = best.range("slope[v,v]", "1/4", "1/4", [4], ["m"]), best.range("target-miss[v]", "-1/8", "1/8")
     best.theorem("slope", "slope", [slope, miss], gain="1/4", residual="1/8")
     best.point("slope[v,v]", {"v": "0", "w": "0"}, "1/4", uses=[4])
-    both = verdicts("slope and split", best, "region", [("gain <= 0.25", "proved"), ("gain < 0.25", "undecided")])
+    both = verdicts("slope and split", best, "region", [("gain <= 0.25", "proved"), ("gain < 0.25", "refuted")])  # two corrections: no sector
     accept("slope and split, exact", but(both, "results requirements 0 value", {"lower": "1/4", "upper": "1/4"}))
     for end, value in (("lower", moved("1/4", 1)), ("upper", moved("1/4", -1))):
         reject(f"slope and split, {end}", but(both, "results requirements 0 value", {"lower": None, "upper": None} | {end: value}), "results", f"value.{end}: more")
@@ -1537,6 +1541,155 @@ def splits() -> None:
 
 
 splits()
+
+
+# sector: v⁺ = v + w - p f with f = u v + 1/8 the correction: ∂F/∂f = -p, ∂f/∂v = u, f = 1/8 at the target, N - v = w
+
+
+def sectors() -> None:
+    asked = ["gain <= 0.75", "gain < 0.75", "residual <= 0.21875", "bound <= 0.875", "steps(v, 0.875, 0.875) <= 0"]
+    derived = [(x, "refuted" if "<" in x and "=" not in x else "proved") for x in asked]
+    top, many = 'correction = ["f"]\nroute = "sector"', 'w = ["-1/8", "1/8"]\np = ["1/2", "3/4"]\nu = ["1/2", "1"]'
+
+    def drafted(text: str, middle: Sequence[tuple[str, str, str]], gain: str, residual: str, bound: str) -> Draft:
+        """4 invariant, 5 sensitivity, 6 slope, 7 start, 8 residual, 9 pair, 10 bound."""
+        d = Draft(text)
+        d.range("target[v]", "0", "0")
+        d.theorem("smaller-ball", "ball", [1], radius="1")
+        d.range("image[v]", "-1", "1", trees=["m"])
+        d.theorem("invariant-region", "invariant", [1, 3])
+        for name, low, high in middle:
+            d.range(f"sector-{name}[v]", low, high, [] if name == "start" else [4])
+        d.theorem("sector", "sector", [5, 6, 7, 8], gain=gain, residual=residual)
+        d.theorem("ultimate-bound", "bound[sector]", [4, 9], bound=bound)
+        return d
+
+    text = claim("v + w - p*f", "[-1, 1]", many, requires=asked, top=top, rest='[define]\nf = "u*v + 1/8"')
+    middle = [("sensitivity", "-3/4", "-1/2"), ("gain", "1/2", "1"), ("start", "1/8", "1/8"), ("residual", "-1/8", "1/8")]
+    d = drafted(text, middle, "3/4", "7/32", "7/8")
+    at = {"p": "1/2", "u": "3/4", "v": "1", "w": "0", "share(f)": "1/3"}
+    d.point("sector-sensitivity[v]", at, "-1/2", uses=[4])
+    d.point("sector-gain[v]", {"u": "1/2", "v": "0"}, "1/2", uses=[4])
+    d.point("sector-residual[v]", {"p": "1/2", "w": "-1/8"}, "-1/8", uses=[4])  # v is in N and in what is taken away
+    good = verdicts("sector", d, "region", derived)
+    exact = but(good, "results gain", {"lower": "3/4", "upper": "3/4"}, "results residual", {"lower": "1/8", "upper": "7/32"}, "results bound", {"lower": "1/2", "upper": "7/8"})
+    accept("sector, exact", exact)
+    for path, value, by in (("gain lower", "3/4", 1), ("gain upper", "3/4", -1), ("residual lower", "1/8", 1), ("residual upper", "7/32", -1), ("bound lower", "1/2", 1), ("bound upper", "7/8", -1)):
+        reject(f"sector, {path} more", but(exact, f"results {path}", moved(value, by)), "results", "more is claimed")
+    for key, value in (("gain", "3/4"), ("residual", "7/32")):
+        reject(f"sector, {key} less", but(good, f"proof 8 concludes {key}", moved(value, -1)), "proof line 9", "gain or residual: less")
+        accept(f"sector, {key} more", but(good, f"proof 8 concludes {key}", moved(value, 1), "proof 9 concludes bound", "1", "results requirements", [but(x, "verdict", "undecided") for x in good["results"]["requirements"]]))
+    for n, (name, low, high) in enumerate(middle, 5):
+        for end, value in (("lower", moved(low, 1)), ("upper", moved(high, -1))):
+            reject(f"sector, {name}, {end}", but(good, f"proof {n - 1} concludes {end}", value), f"proof line {n}", "wider than")
+    for n in (5, 6, 8):
+        reject(f"sector, line {n} of another set", but(good, f"proof {n - 1} uses", [2]), "proof line 9", "refer to different sets")
+        reject(f"sector, line {n} of no set", but(good, f"proof {n - 1} uses", []), f"proof line {n}", "needs a line that gives its set")
+    reject("sector, the start on a set", but(good, "proof 6 uses", [4]), "proof line 7", "this obligation rests on no set")
+    for uses in ([5, 6, 7], [6, 5, 7, 8], [5, 6, 8, 7], [5, 6, 7, 8, 8], []):
+        reject(f"sector uses {uses}", but(good, "proof 8 uses", uses), "proof line 9", "sector rests on range sector-sensitivity[v], range sector-gain[v], range sector-start[v], range sector-residual[v]")
+    reject("sector proves another", but(good, "proof 8 proves", "split"), "proof line 9", "sector rests on")
+    for corrected in ("", 'correction = ["f", "g"]', 'correction = ["f"]\nhorizon = 2'):
+        changed = claim("v + w - p*f", "[-1, 1]", many, requires=asked, top=corrected, rest='[define]\nf = "u*v + 1/8"\ng = "0"')
+        reject(f"sector with {corrected!r}", but(good, "claim text", changed), "proof line 5", "sector-sensitivity[v] is no obligation")
+    for name in ("sector-sensitivity[w]", "sector-band[v]", "sector-gain", "sector-start[u]"):
+        reject(f"sector, {name}", but(good, "proof 4 proves", name), "proof line 5", f"{name} is no obligation")
+    for change, reason in (({"share(f)": moved("1", 1)}, "outside"), ({"share(f)": moved("0", -1)}, "outside"), ({"share(f)": "1"}, ""), ({"share(f)": "0"}, "")):
+        changed = but(good, "proof 10 witness at", at | change)
+        if reason:
+            reject(f"sector, {change}", changed, "proof line 11", "at.share(f): outside the range")
+        else:
+            accept(f"sector, {change}", changed)
+    reject("sector, a point of another set", but(good, "proof 10 uses", [2]), "results", "sector-sensitivity[v]: a point of another set")
+    reject("sector, a slope of another set", but(good, "proof 11 uses", [2]), "results", "sector-gain[v]: a point of another set")
+    # what is surely taken, known within ends only: 1 + c m from its least magnitude
+    for (a, b), (x, y), least in ((("-5/8", "-1/2"), ("1/2", "3/4"), "17/32"), (("-2", "-1/2"), ("1/2", "1"), "0"), (("-1/2", "1"), ("1/2", "1"), "1/2"), (("-1/2", "-1/2"), ("-1", "1/2"), "3/4")):
+        changed = but(exact, "proof 10 concludes", {"lower": a, "upper": b}, "proof 11 concludes", {"lower": x, "upper": y}, "results gain", {"lower": least, "upper": "3/4"}, "results bound", None, "results requirements", [but(q, "verdict", "undecided") for q in good["results"]["requirements"]])
+        accept(f"sector, known within {a}, {b} and {x}, {y}", changed)
+        reject(f"sector, known within {a}, {b} and {x}, {y}, more", but(changed, "results gain lower", moved(least, 1)), "results", "results.gain.lower: more")
+    # of several points the ones that make the largest gain count
+    lines = good["proof"]
+    for n, name, more, there in ((10, "sector-sensitivity[v]", "-3/4", at | {"p": "3/4"}), (11, "sector-gain[v]", "1", {"u": "1", "v": "0"})):
+        other = but(lines[n], "witness at", there, "concludes", {"lower": more, "upper": more})
+        reject(f"{name} twice", but(exact, "proof", [*lines, other]), "proof", "line 14 serves no later line")
+        reject(f"{name} twice, in the other order", but(exact, "proof", [*lines[:n], other, *lines[n:]]), "proof", f"line {n + 1} serves no later line")
+    for gone, ends in ((10, "gain"), (11, "gain"), (12, "residual")):
+        without = but(exact, "proof", [x for n, x in enumerate(lines) if n != gone], "results requirements", [but(q, "verdict", "undecided") for q in good["results"]["requirements"]])
+        place, reason = ("proof", "serves no later line") if ends == "gain" else ("results", "results.residual.lower: nothing")
+        reject(f"sector without point {gone}", without if ends != "gain" else but(without, "results gain lower", None, "results bound lower", None), place, reason)
+    # the other way round: steps that overshoot, 1 - p from -3/4 to -1/2, and N - v that moves the state by 1/8 alone
+    asked = ["gain <= 0.75", "gain < 0.75"]
+    text = claim("v + w - p*f", "[-1, 1]", 'w = ["-1/8", "1/8"]\np = ["3/2", "7/4"]', requires=asked, top='correction = ["f"]', rest='[define]\nf = "v"')
+    over = drafted(text, [("sensitivity", "-7/4", "-3/2"), ("gain", "1", "1"), ("start", "0", "0"), ("residual", "-1/8", "1/8")], "3/4", "1/8", "1/2")
+    sensitivity = over.point("sector-sensitivity[v]", {"p": "7/4", "v": "1", "w": "0", "share(f)": "1"}, "-7/4", uses=[4])
+    over.point("sector-gain[v]", {"v": "0"}, "1", uses=[4])
+    alone = verdicts("sector alone, best", over, "region", [("gain <= 0.75", "proved"), ("gain < 0.75", "undecided")])
+    reject("overshoot, gain less", but(alone, "proof 8 concludes gain", moved("3/4", -1)), "proof line 9", "gain or residual: less")
+    within = but(alone, f"proof {sensitivity - 1} concludes lower", "-15/8", "results gain", {"lower": "3/4", "upper": "3/4"})
+    accept("overshoot, known within ends", within)
+    reject("overshoot, known within ends, more", but(within, "results gain lower", moved("3/4", 1)), "results", "results.gain.lower: more")
+    more = but(over.proof[sensitivity - 1], "witness at p", "3/2", "concludes", {"lower": "-3/2", "upper": "-3/2"})
+    reject("overshoot, another point", but(alone, "proof", [*over.proof, more]), "proof", "line 13 serves no later line")
+    reject("overshoot, another point first", but(alone, "proof", [*over.proof[:sensitivity - 1], more, *over.proof[sensitivity - 1:]]), "proof", "line 11 serves no later line")
+    # refuted only once every route that the claim has is on the proof: slope, split and sector
+    uses = [4]
+    parts = {
+        "split": [("range", "split-slope[v,v]", "-3/4", "-1/2", {}), ("range", "split-residual[v]", "-1/8", "1/8", {}), ("point", "split-slope[v,v]", "-3/4", "-3/4", {"p": "7/4", "v": "0"})],
+        "slope": [("range", "slope[v,v]", "-3/4", "-1/2", {}), ("range", "target-miss[v]", "-1/8", "1/8", {}), ("point", "slope[v,v]", "-3/4", "-3/4", {"p": "7/4", "v": "0", "w": "0"})],
+    }
+    for routes in (["slope"], ["split"], ["slope", "split"]):
+        for points in (True, False):
+            both = Draft(text)
+            both.proof = copy.deepcopy(over.proof)
+            for route in routes:
+                each = []
+                for rule, name, low, high, where in parts[route]:
+                    on = [] if name.startswith("target") else uses
+                    if rule == "range":
+                        each.append(both.range(name, low, high, on, ["m"]))
+                    elif points or route != routes[-1]:
+                        both.point(name, where, low, uses=on)
+                both.theorem(route, route, each, gain="3/4", residual="1/8")
+            final = points and len(routes) == 2
+            entries = both.entries("region", [("gain <= 0.75", "proved"), ("gain < 0.75", "refuted" if final else "undecided")])
+            accept(f"sector beside {routes}, points: {points}", entries)
+            if not final:
+                claims = but(entries, "results requirements 1 verdict", "refuted")
+                reject(f"sector beside {routes}, points: {points}, refuted", claims, "results", "[2].verdict: refuted is claimed, undecided was derived")
+    two = but(entries, "claim text", text.replace('["f"]', '["f", "g"]').replace('f = "v"', 'f = "v"\ng = "0"'))
+    reject("two corrections have no sector", two, "proof line 5", "is no obligation")
+
+
+sectors()
+
+
+def sector_of_a_target_that_moves() -> None:
+    """v⁺ = v - f/2 + w with f = v - c + 1/8 and c within 1/8, moving by 1/16 a step: ε = 1/16 + 1/2·1/8 + 1/16."""
+    held = 'w = ["-1/16", "1/16"]\nc = { range = ["-1/8", "1/8"], held = true, change = "1/16" }'
+    asked = ["residual <= 0.1875", "residual < 0.1875"]
+    d = Draft(claim("v + w - f/2", "[-1, 1]", held, "c", requires=asked, top='correction = ["f"]\nroute = "sector"', rest='[define]\nf = "v - c + 1/8"'))
+    d.range("target[v]", "-1/8", "1/8")
+    d.theorem("smaller-ball", "ball", [1], radius="7/8")
+    d.range("image[v]", "-1", "1", trees=["m"])
+    d.theorem("invariant-region", "invariant", [1, 3])
+    d.range("sector-sensitivity[v]", "-1/2", "-1/2", [4])
+    d.range("sector-gain[v]", "1", "1", [4])
+    d.range("sector-start[v]", "1/8", "1/8")
+    d.range("sector-residual[v]", "-1/16", "1/16", [4])
+    d.range("target-slope[v,c]", "1", "1")
+    d.theorem("sector", "sector", [5, 6, 7, 8, 9], gain="1/2", residual="3/16")
+    d.theorem("ultimate-bound", "bound[sector]", [4, 10], bound="3/8")
+    d.point("sector-residual[v]", {"w": "1/16"}, "1/16", uses=[4])
+    good = d.entries("region", [(asked[0], "proved"), (asked[1], "undecided")])
+    good = but(good, "results residual", {"lower": "1/8", "upper": "3/16"})
+    accept("sector, a target that moves", good)
+    for path, value, by in (("lower", "1/8", 1), ("upper", "3/16", -1)):
+        reject(f"sector, a target that moves, {path}", but(good, f"results residual {path}", moved(value, by)), "results", "more is claimed")
+    reject("sector, a target that moves, less", but(good, "proof 9 concludes residual", moved("3/16", -1)), "proof line 10", "gain or residual: less")
+    reject("sector without the movement", but(good, "proof 9 uses", [5, 6, 7, 8]), "proof line 10", "sector rests on")
+
+
+sector_of_a_target_that_moves()
 
 
 # orbits and paths: v⁺ = v/2 + w, |w| <= 1/2, on [-1, 1] again
@@ -2344,16 +2497,16 @@ def files() -> None:
             reject(f"made with {str(made)[-14:]+str(len(str(made)))}", but(BASE, "made_with", made), "made_with", "names and versions")
     for assumed in ([""], {}, None, "", [[]]):
         reject(f"assumptions {assumed}", but(BASE, "assumptions", assumed), "assumptions", "none are known")
-    add("another digest", Case(canonical({**BASE, "digest": "0" * 64}), "invalid", "digest", "the digest does not match"))
+    CASES.add("another digest", Case(canonical({**BASE, "digest": "0" * 64}), "invalid", "digest", "the digest does not match"))
     damaged = canonical({**BASE, "digest": digest(BASE), "made_with": {"a": "b"}})
-    add("a digest of something else", Case(damaged, "invalid", "digest", "the digest does not match"))
+    CASES.add("a digest of something else", Case(damaged, "invalid", "digest", "the digest does not match"))
 
 
 files()
 
 
 def unreadable(name: str, data: bytes, reason: str) -> None:
-    add(name, Case(data, "unreadable", "", reason))
+    CASES.add(name, Case(data, "unreadable", "", reason))
 
 
 def texts() -> None:
@@ -2384,7 +2537,7 @@ def texts() -> None:
             lone_text = f'{{"x":{{"\\u{code:04x}":1}}}}' if where == "key" else f'{{"x":"\\u{code:04x}"}}'
             unreadable(f"{where} with {code:x}", lone_text.encode(), "a lone surrogate" if lone else "entries missing or unknown")
     not_canonical = json.dumps({**BASE, "digest": digest(BASE)}, indent=1).encode()
-    add("another spelling of the same", Case(not_canonical, "valid"))
+    CASES.add("another spelling of the same", Case(not_canonical, "valid"))
 
 
 texts()

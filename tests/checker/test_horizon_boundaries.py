@@ -12,41 +12,13 @@ from typing import Any
 import pytest
 
 import ultibound.checker
-from tests.checker.test_boundaries import (
-    GONE,
-    STEP,
-    Case,
-    Draft,
-    Entries,
-    Question,
-    but,
-    claim,
-    derivation,
-    refuses,
-    sealed,
-)
+from tests.checker.test_boundaries import GONE, STEP, Draft, Entries, Questions, but, claim, derivation, refuses
 from tests.checker.test_several_boundaries import Lines, hair, without
 from tests.checker.test_several_boundaries import claim as claim_of_two
 from tests.stances import stance
 
-CASES: dict[str, Question] = {}
-
-
-def unit(question: Question) -> Question:
-    """Registers assertions about functions of the checker."""
-    assert question.__name__ not in CASES
-    CASES[question.__name__] = question
-    return question
-
-
-def accept(name: str, entries: Entries) -> None:
-    assert name not in CASES, name
-    CASES[name] = Case(sealed(entries), "valid")
-
-
-def reject(name: str, entries: Entries, place: str, reason: str) -> None:
-    assert name not in CASES, name
-    CASES[name] = Case(sealed(entries), "invalid", place, reason)
+CASES = Questions()
+unit, accept, reject = CASES.unit, CASES.accept, CASES.reject
 
 
 def judged(name: str, entries: Entries) -> None:

@@ -9,20 +9,11 @@ from typing import Any
 import pytest
 
 import ultibound.checker
-from tests.checker.test_boundaries import GONE, STEP, Case, Entries, Question, but, sealed
+from tests.checker.test_boundaries import GONE, STEP, Questions, but
 from tests.checker.test_several_boundaries import BOX, Lines, ball, claim, hair, in_region, region, without
 
-CASES: dict[str, Question] = {}
-
-
-def accept(name: str, entries: Entries) -> None:
-    assert name not in CASES, name
-    CASES[name] = Case(sealed(entries), "valid")
-
-
-def reject(name: str, entries: Entries, place: str, reason: str) -> None:
-    assert name not in CASES, name
-    CASES[name] = Case(sealed(entries), "invalid", place, reason)
+CASES = Questions()
+accept, reject = CASES.accept, CASES.reject
 
 
 # tables of numbers: one line each reads better

@@ -12,28 +12,12 @@ from typing import Any
 import pytest
 
 import ultibound.checker
-from tests.checker.test_boundaries import STEP, Case, Entries, Question, but, refuses, sealed
+from tests.checker.test_boundaries import STEP, Entries, Questions, but, refuses
 from tests.checker.test_several_boundaries import ONE, Lines, claim, hair, rounding_lines
 
-CASES: dict[str, Question] = {}
+CASES = Questions()
+unit, accept, reject = CASES.unit, CASES.accept, CASES.reject
 SMALL = "lower: the trace is not shown to be so large"
-
-
-def unit(question: Question) -> Question:
-    """Registers assertions about functions of the checker."""
-    assert question.__name__ not in CASES
-    CASES[question.__name__] = question
-    return question
-
-
-def accept(name: str, entries: Entries) -> None:
-    assert name not in CASES, name
-    CASES[name] = Case(sealed(entries), "valid")
-
-
-def reject(name: str, entries: Entries, place: str, reason: str) -> None:
-    assert name not in CASES, name
-    CASES[name] = Case(sealed(entries), "invalid", place, reason)
 
 
 # tables of numbers: one line each reads better

@@ -13,39 +13,11 @@ from typing import Any
 import pytest
 
 import ultibound.checker
-from tests.checker.test_boundaries import (
-    BASE,
-    GONE,
-    STEP,
-    Case,
-    Draft,
-    Entries,
-    Question,
-    but,
-    derivation,
-    refuses,
-    sealed,
-)
+from tests.checker.test_boundaries import BASE, GONE, STEP, Draft, Entries, Questions, but, derivation, refuses
 from tests.checker.test_stance_boundaries import STILL, limited
 
-CASES: dict[str, Question] = {}
-
-
-def unit(question: Question) -> Question:
-    """Registers assertions about functions of the checker."""
-    assert question.__name__ not in CASES
-    CASES[question.__name__] = question
-    return question
-
-
-def accept(name: str, entries: Entries, leaves: int | None = None) -> None:
-    assert name not in CASES, name
-    CASES[name] = Case(sealed(entries), "valid", leaves=leaves)
-
-
-def reject(name: str, entries: Entries, place: str, reason: str) -> None:
-    assert name not in CASES, name
-    CASES[name] = Case(sealed(entries), "invalid", place, reason)
+CASES = Questions()
+unit, accept, reject = CASES.unit, CASES.accept, CASES.reject
 
 
 # tables of numbers: one line each reads better

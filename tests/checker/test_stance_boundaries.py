@@ -16,27 +16,11 @@ from typing import Any
 import pytest
 
 import ultibound.checker
-from tests.checker.test_boundaries import STEP, Case, Draft, Entries, Question, but, derivation, refuses, sealed
+from tests.checker.test_boundaries import STEP, Draft, Questions, but, derivation, refuses
 from tests.stances import stance
 
-CASES: dict[str, Question] = {}
-
-
-def unit(question: Question) -> Question:
-    """Registers assertions about functions of the checker."""
-    assert question.__name__ not in CASES
-    CASES[question.__name__] = question
-    return question
-
-
-def accept(name: str, entries: Entries) -> None:
-    assert name not in CASES, name
-    CASES[name] = Case(sealed(entries), "valid")
-
-
-def reject(name: str, entries: Entries, place: str, reason: str) -> None:
-    assert name not in CASES, name
-    CASES[name] = Case(sealed(entries), "invalid", place, reason)
+CASES = Questions()
+unit, accept, reject = CASES.unit, CASES.accept, CASES.reject
 
 
 # tables of numbers: one line each reads better

@@ -29,7 +29,7 @@ def main() -> None:
         wrong = tried = length = 0
         gap = float("nan")
         if found:
-            gap = least_sampled(p, len(next(iter(p)))) - float(Fraction(found[0]["concludes"]["lower"]))
+            gap = least_sampled(p, len(next(iter(p))))[0] - float(Fraction(found[0]["concludes"]["lower"]))
             length = len(str(found[0]["witness"]))
             for change in changes(found[0]["witness"], 40):
                 tried += 1

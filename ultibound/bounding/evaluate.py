@@ -10,7 +10,7 @@ from typing import Any
 import numpy as np
 
 from ..claim.model import Library
-from ..polynomial.flows import FlowTable
+from ..polynomial.flows import FlowTable, Met
 from ..stepmap.program import Program, Step
 from .intervals import UNARY, Branch, Floats, Pair, Table, div, hull, mul, power
 
@@ -85,6 +85,7 @@ class Runner:
         done: list[Pair] = []
         met: dict[int, Branch] = {}
         sides: dict[Corner, tuple[Any, Any]] = {}
+        places: dict[tuple[int, ...], Met] = {}
         with np.errstate(all="ignore"):
             for number, step in enumerate(self.program.steps[: max(wanted) + 1]):
                 if step.op == "reading":
@@ -93,10 +94,12 @@ class Runner:
                     pair, met[number] = table.read([done[a] for a in step.args], step.orders, count, fixed)
                     done.append(pair)
                 elif step.op == "flow" and self.flows is not None:
+                    if step.args not in places:  # entries and derivatives are read at the same places
+                        fixed = branches.get(number) if branches else None
+                        places[step.args] = self.flows.met([done[a] for a in step.args], count, fixed)
                     i, j = (int(x) for x in step.name.split())
-                    fixed = branches.get(number) if branches else None
-                    pair, met[number] = self.flows.read(i, j, step.orders, [done[a] for a in step.args], count, fixed)
-                    done.append(pair)
+                    done.append(self.flows.range(i, j, step.orders, places[step.args]))
+                    met[number] = places[step.args].branch
                 elif step.op in ("abs", "max", "min", "pick"):
                     done.append(_corner(step, done, sides, hold, count, self.slack))
                 else:

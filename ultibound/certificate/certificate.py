@@ -10,6 +10,7 @@ from importlib import metadata
 from pathlib import Path
 from typing import Any
 
+from ..checker import Verdict
 from ..checker.document import FORMAT, LARGEST, Unreadable, canonical, digest, read
 from ..claim import Claim
 
@@ -20,11 +21,13 @@ LIBRARIES = ("numpy", "sympy", "python-flint")
 class Certificate:
     """The entries of one certificate (certificate-format). Proved only as far as `ultibound.check` says valid.
 
-    `interrupted` tells that Ctrl-C cut the search short; it is not part of the file.
+    `interrupted` tells that Ctrl-C cut the search short, `accepted` what the checker said of these bytes where it was
+    asked already; neither is part of the file.
     """
 
     entries: dict[str, Any] = field(repr=False)
     interrupted: bool = False
+    accepted: Verdict | None = field(default=None, repr=False, compare=False)
 
     @property
     def results(self) -> dict[str, Any]:

@@ -117,6 +117,13 @@ class Encloser:
         taken = [self._point(name, p, bits, on) for p in (found.highest, found.lowest)]
         self._write_points(name, [t for t in taken if t], False, bits, on)
 
+    def point(self, obligation: Obligation, at: Point, on: int) -> None:
+        """One point, as another search found it."""
+        bits = 0 if self.writer.rational(obligation.name, on) else BITS
+        taken = self._point(obligation.name, at, bits, on)
+        if taken is not None:
+            self._write_points(obligation.name, [taken], False, bits, on)
+
     def search(
         self,
         obligation: Obligation,

@@ -9,6 +9,7 @@ from math import prod
 
 from ..bounding.evaluate import to_float
 from ..checker.results import Results
+from ..checker.theorems import OWN
 from ..claim.obligations import Domain, Obligations
 from ..contraction import enough_radius
 from ..contraction.budget import budget, narrowed, told
@@ -31,7 +32,7 @@ class Explained:
     def where(self, name: str) -> str:
         """The point of largest magnitude on the point lines of an obligation, for people."""
         lines = self.ranges.writer.proof.lines.items()
-        points = [(n, x) for n, x in lines if (x.rule, x.proves, x.variant) == ("point", name, 0)]
+        points = [(n, x) for n, x in lines if (x.rule, x.proves, x.variant) == ("point", name, OWN)]
         if not points:
             return ""
         number = max(points, key=lambda p: max(abs(x) for x in p[1].concludes.values()))[0]

@@ -11,6 +11,7 @@ from ..checker.graph import across, largest, of_part
 from ..checker.matrices import Leaf, Matrix, Metric
 from ..checker.rules import Proof, Rejected
 from ..checker.several import moved, movements
+from ..checker.theorems import OWN
 from .lines import upward
 from .norms import NormWriter, solved, texts
 
@@ -25,7 +26,7 @@ class StanceWriter(NormWriter):
 
     def __init__(self, proof: Proof, raw: list[dict[str, Any]], part: str) -> None:
         self.proof, self.raw, self.part, self.flow = proof, raw, part, None
-        self.derivation = of_part(proof.graph, 0, part)
+        self.derivation = of_part(proof.graph, OWN, part)
 
 
 class StepWriter(StanceWriter):

@@ -21,6 +21,7 @@ from ..checker.reals import Scaled, Undefined
 from ..checker.rules import Line, Proof, Rejected, place
 from ..checker.statement import read_statement
 from ..checker.terms import Terms
+from ..checker.theorems import Variant
 from ..claim import Claim
 
 DIGITS = 25
@@ -284,16 +285,31 @@ class Writer:
         number = {old: new for new, old in enumerate(kept, 1)}
         return [{**self.raw[n - 1], "uses": [number[u] for u in self.raw[n - 1]["uses"]]} for n in kept]
 
-    def adopt(self, other: Writer, variant: int, needed: set[int]) -> None:
-        """Appends what a requirement with ranges of its own rests on, from the lines of its own proof."""
+    def piece(self, number: int, gain: str, lower: Fraction, upper: Fraction) -> None:
+        """Appends the line that says which gains a piece holds."""
+        witness = {"gain": gain, "lower": str(lower), "upper": str(upper)}
+        line = {"rule": "gains", "proves": f"gains[{number}]", "uses": [], "witness": witness, "concludes": {}}
+        self.proof.add(line)
+        self.raw.append(line)
+
+    def adopt(self, other: Writer, variant: Variant, needed: set[int]) -> None:
+        """Appends what a piece of gains, or a requirement with ranges of its own, rests on, from its own proof."""
         number: dict[int, int] = {}
+        prefix = (f"gains[{variant.piece}]:" if variant.piece else "") + (
+            f"over[{variant.over}]:" if variant.over else ""
+        )
+
+        def within(own: Variant) -> Variant:
+            return Variant(variant.piece or own.piece, variant.over or own.over)
+
         for old in other._kept(needed):
             raw, line = other.raw[old - 1], other.proof.lines[old]
             uses = [number[u] for u in raw["uses"]]
-            self.raw.append({**raw, "proves": f"over[{variant}]:{raw['proves']}", "uses": uses})
+            self.raw.append({**raw, "proves": prefix + raw["proves"], "uses": uses})
             number[old] = len(self.raw)
-            self.proof.lines[len(self.raw)] = replace(line, variant=variant, uses=tuple(uses))
+            self.proof.lines[len(self.raw)] = replace(line, variant=within(line.variant), uses=tuple(uses))
         self.proof.variants[variant] = other.derivation
+        self.proof.variants |= {within(v): d for v, d in other.proof.variants.items()}
 
     def _kept(self, needed: set[int]) -> list[int]:
         waiting, kept = list(needed), set(needed)

@@ -88,7 +88,8 @@ class Remarks:
             elif r.kind == "gain" and (outcome.value is None or outcome.value.upper is None):
                 parts.append("the effect of a signal within the stance follows the state: k is that of the pair alone")
             elif self.beyond(number):
-                untried = "the sector route is not tried yet" if r.kind == "gain" else "no orbit that far out was found"
+                other = r.kind in ("gain", "residual")
+                untried = "another route or set may do better" if other else "no orbit that far out was found"
                 parts.append(
                     f"this route cannot do better, as attained values show; that is no refutation, since {untried}"
                 )

@@ -5,6 +5,7 @@ from __future__ import annotations
 from fractions import Fraction
 from typing import Any
 
+from ..checker.gains import Interval
 from ..checker.numerals import decimal_down, decimal_up
 from ..checker.results import Results, Span
 from ..claim import Claim
@@ -39,10 +40,27 @@ def assembled(claim: Claim, results: Results, remarks: list[tuple[str | None, bo
         "routes": routes,
         "metric": results.norm(),
         "sensitivities": bands,
-        "gain_intervals": [],
+        "gain_intervals": [interval(x) for x in results.intervals],
         "requirements": requirements,
         **({"stances": stances} if stances else {}),
     }
+
+
+def interval(found: Interval) -> dict[str, Any]:
+    """Where every requirement is proved and where one is refuted exactly as tried, the rest rounded inward."""
+    outer = [None if x is None else str(decimal_up(x, DIGITS)) for x in found.outer]
+    best = found.best and {"value": str(found.best[0]), "gain": str(decimal_up(found.best[1], DIGITS))}
+    return {
+        "gain": found.gain,
+        "inner": inward(found.inner),
+        "outer": outer,
+        "contracting": inward(found.contracting),
+        "best": best,
+    }
+
+
+def inward(ends: tuple[Fraction, Fraction] | None) -> list[str] | None:
+    return None if ends is None else [str(decimal_up(ends[0], DIGITS)), str(decimal_down(ends[1], DIGITS))]
 
 
 def certified(results: Results) -> dict[str, Any] | None:

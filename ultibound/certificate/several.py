@@ -5,7 +5,7 @@ from __future__ import annotations
 from dataclasses import dataclass
 
 from ..checker.results import Outcome, Results
-from ..checker.theorems import Line
+from ..checker.theorems import Line, Variant
 from ..claim import Claim
 from ..claim.constants import constant
 from ..claim.model import Requirement
@@ -44,7 +44,8 @@ class SeveralRemarks:
             parts += [f"{n}: {STOPS.get(x, x)}" for n in names if (x := self.limits.get(n, ""))]
             parts.append("interrupted" if self.interrupted else self.why(r))
         lines = self.results.proof.lines
-        growing = [x for x in lines.values() if x.rule == "product" and x.variant == (number if r.over else 0)]
+        about = Variant(0, number if r.over else 0)
+        growing = [x for x in lines.values() if (x.rule, x.variant) == ("product", about)]
         if outcome.verdict == "refuted" and r.kind == "gain" and growing:
             parts.append(f"whatever the norm: {_grows(growing[0])}")
         return ("; ".join(p for p in parts if p)[:900] or None), pursue

@@ -20,19 +20,20 @@ from ..checker.reals import Undefined
 from ..checker.rules import Rejected
 from ..checker.squares import LEAF, expansion_of, shown
 from ..polynomial.truncation import truncated
-from ..positivity.bounds import bounded_below, least_sampled
+from ..positivity.bounds import bounded_below, least_sampled, work
 from .lines import Writer
 
 BITS = 56
 ORDERS = {1: (12, 24), 2: (8, 16), 3: (8, 12)}  # of models, by the number of variables that matter
 FEW = (4, 8)  # of more variables
 MOST_TOPS = 64  # combinations of library cells and listed values
-MOST_PIECES = 32
+MOST_PIECES, WORK = 32, 40_000  # parts beyond these; entries of Gram matrices, over all parts
 DEGREE = 12  # up to which an exact polynomial is left as it is
 SHARE = 4  # the remainder, and what is cut off, may each take one part in so many of the gap
 LEAST, NOTHING = 0.02, 1e-6  # share of the spread of a polynomial that counts as its size near zero; and at least
 
 SIGNS = {"lower": 1, "upper": -1}
+GRAIN = 2**20  # of points
 TREE = list[str]
 
 
@@ -56,7 +57,8 @@ class Squares:
         self.meaning = writer.derivation.meaning(asked.proves, writer.domain(asked.on))
         self.pieces: list[dict[str, Any]] = []
         self.found: dict[str, Fraction] = {}
-        self.most = MOST_PIECES
+        self.most = self.tops = 0
+        self.breaking: dict[str, Fraction] = {}  # a point that seems to have less than would be enough
         self.said = ""  # of the last programme
 
     def line(self) -> tuple[int | None, str]:
@@ -64,7 +66,7 @@ class Squares:
         tops = [list(top) for top in product(*(v.cells for v in self.meaning.variables))]
         if len(tops) > MOST_TOPS:
             return None, f"{len(tops)} cells: sums of squares are tried over {MOST_TOPS} at most"
-        self.most = MOST_PIECES + len(tops)
+        self.tops, self.most = len(tops), MOST_PIECES + len(tops)
         try:
             witness, expansion = self.nearest(tops[0])
             trees = [" ".join(self.divided(expansion, top, len(tops) - k)) for k, top in enumerate(tops, 1)]
@@ -95,22 +97,28 @@ class Squares:
         found = self.asked.gap * max(middle - far, LEAST * far, NOTHING)
         return min([found, *(room for name in self.asked.enough if 0 < (room := self.room(near, name)) < inf)])
 
-    def room(self, near: Polynomial, name: str) -> float:
-        """Between what would be enough and the end that samples show; negative where it cannot be reached."""
+    def room(self, near: Polynomial, name: str, box: Box | None = None) -> float:
+        """Between what would be enough and the end that samples of the box show; below 0 where it cannot be reached."""
         sign, enough = SIGNS[name], self.asked.enough[name]
         if isinf(enough):
             return inf
         count = len(self.meaning.variables)
-        return (
-            least_sampled({e: sign * c for e, c in near.items()} or {(0,) * count: Fraction(0)}, count) - sign * enough
-        )
+        signed = {e: sign * c for e, c in near.items()} or {(0,) * count: Fraction(0)}
+        least, at = least_sampled(signed, count)
+        if least < sign * enough and box is not None:
+            whole = [Fraction(round(float(t) * GRAIN), GRAIN) for t in at]
+            self.breaking = {
+                v.name: (low + high + (high - low) * t) / 2
+                for v, (low, high), t in zip(self.meaning.variables, box, whole, strict=True)
+            }
+        return least - sign * enough
 
     def divided(self, expansion: Expansion, box: Box, others: int) -> TREE:
         """The splitting tree of a box whose parts have squares; `others`: boxes that come after it."""
         room = time.monotonic() < self.asked.until and len(self.pieces) + others < self.most
         try:
             near, rest = expansion.over_box(box)
-            stated, close = self.piece(near, rest)
+            stated, close = self.piece(near, rest, box)
         except Undefined:
             stated, close, near, rest = None, False, {}, Fraction(0)
         axis = None if close else self.widest(near, box)
@@ -139,13 +147,18 @@ class Squares:
                 weights[i] = bent, (high - low) / (v.cells[-1][1] - v.cells[0][0])
         return max(weights, key=lambda i: weights[i]) if weights else None
 
-    def piece(self, near: Polynomial, rest: Fraction) -> tuple[dict[str, Any] | None, bool]:
+    def piece(self, near: Polynomial, rest: Fraction, box: Box) -> tuple[dict[str, Any] | None, bool]:
         """A polynomial near the term and its squares, and whether they are as close as is asked."""
         count, budget = len(self.meaning.variables), self.budget(near)
         whole = not rest and max(map(sum, near), default=0) <= DEGREE
         p = near if whole else truncated(near, budget / SHARE)
         off = float(rest + size(count, {e: near.get(e, Fraction(0)) - p.get(e, Fraction(0)) for e in near | p}))
         p = p or {(0,) * count: Fraction(0)}
+        self.most = min(self.most, self.tops + WORK // work(p))
+        if self.tops * work(p) > 2 * WORK:
+            raise Rejected(
+                f"{self.tops} cells with polynomials of so many terms: more than sums of squares are tried for"
+            )
         stated: dict[str, Any] = {"polynomial": written(p)}
         close = True
         for name, enough in self.asked.enough.items():
@@ -155,8 +168,9 @@ class Squares:
             if found is None:
                 return None, False
             bound = float(found.bound)
+            room = self.room(near, name, box)
             near_enough = bound >= low - budget and SHARE * rest <= budget
-            close &= bound - off >= sign * enough or (near_enough and not 0 < self.room(near, name) < inf)
+            close &= bound - off >= sign * enough or (near_enough and not 0 < room < inf)
             squares = [[str(w), n, written(q)] for w, n, q in found.squares]
             stated[name] = {"bound": str(sign * found.bound), "squares": squares}
         return stated, close

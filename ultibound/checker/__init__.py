@@ -29,7 +29,8 @@ class Verdict:
 
     `status` is "valid" (every line holds), "invalid" (a line or entry does not, named in `place` and `reason`) or
     "unreadable" (not a certificate of this format). `lines` and `leaves` count what was verified; `verdicts` are
-    those of the requirements; `results` and `proof` are the certificate's own entries, given only when valid.
+    those of the requirements; `results`, `proof`, `claim` and `digest` are the certificate's own entries, `derived` is
+    what this checker made of its lines; all given only when valid.
     """
 
     status: str
@@ -41,6 +42,8 @@ class Verdict:
     results: dict[str, Any] | None = None
     proof: tuple[dict[str, Any], ...] = field(default=(), repr=False)
     claim: dict[str, Any] | None = field(default=None, repr=False)
+    derived: Proof | None = field(default=None, repr=False)
+    digest: str = ""
 
 
 def check(data: bytes, watch: Callable[[int, int], None] = lambda done, total: None) -> Verdict:
@@ -79,8 +82,9 @@ def check(data: bytes, watch: Callable[[int, int], None] = lambda done, total: N
         return Verdict("invalid", place, str(why), max(0, number - 1))
     verdicts = tuple(r["verdict"] for r in entries["results"]["requirements"])
     return Verdict(
-        "valid", "", "", number, proof.leaves, verdicts, entries["results"], tuple(entries["proof"]), entries["claim"]
-    )
+        "valid", "", "", number, proof.leaves, verdicts, entries["results"], tuple(entries["proof"]), entries["claim"],
+        proof, entries["digest"],
+    )  # fmt: skip
 
 
 def claimed(entries: dict[str, Any]) -> Any:

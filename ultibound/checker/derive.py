@@ -18,6 +18,7 @@ from .model import Quantity, Range, Requirement, Statement
 from .motion import PHASE, Motion, copy, grown, landed, motion, supported
 from .names import Names, mentioned
 from .ranges import Ends
+from .sector import applies, of_sector
 from .signals import excess, followed, instant
 from .terms import Terms
 
@@ -105,8 +106,8 @@ class Derivation:
         stance = statement.stances[0]
         if len(statement.stances) > 1 or stance.name:
             raise Unprovable("only claims of one stance can be checked")
-        if statement.route == "sector":
-            raise Unprovable("only the routes slope, split and curve can be checked")
+        if statement.route == "sector" and not applies(statement):
+            raise Unprovable("the route sector is known for one state, one step and one correction")
         several = len(stance.states) > 1
         if several and (statement.route not in ("best", "slope") or len(stance.states) > MOST_STATES):
             raise Unprovable(f"only the route slope can be checked for two to {MOST_STATES} states")
@@ -185,6 +186,8 @@ class Derivation:
             held = {h: self.statement.uncertain[h] for h in self.moving(s)}
             given = {h: (self.occurs(q), self.surely(q)) for h, q in held.items()}
             return self.over(self.names(cut=by).of(f"target({s})"), by, given)
+        if (known := of_sector(self, name, domain)) is not None:
+            return known
         if domain is None:
             raise Unprovable(f"{name} needs a line that gives its set")
         if kind == "slope" and by in self.states:

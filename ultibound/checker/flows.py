@@ -158,7 +158,7 @@ class Flows:
     ) -> None:
         self.system, self.cuts, self.pieces, self.cells, self.error = system, cuts, pieces, cells, error
         self.grids = tuple(p.grid for p in system.motion.parameters)
-        self._last: tuple[Any, list[Place]] = (None, [])
+        self._last: dict[bool, tuple[Any, list[Place]]] = {}  # of the arguments last asked for
         self.bits = system.bits + 4  # after the point of middles and reaches
         self._known: dict[Any, tuple[Stored, int, Fraction]] = {}
         self._found: dict[Any, Interval] = {}
@@ -209,8 +209,8 @@ class Flows:
     def _places(self, orders: Sequence[int], at: Sequence[Ends], cells: Sequence[range]) -> list[Place]:
         """Parts of cells and pieces that together cover the intervals: proofs/trajectory.md (6)."""
         jumps = any(orders[1:])
-        key = jumps, tuple(at), tuple(cells)
-        if key != self._last[0]:
+        key = tuple(at), tuple(cells)
+        if jumps not in self._last or key != self._last[jumps][0]:
             spans = [self._across(k, at[k + 1], cells[k + 1] if jumps else None) for k in range(len(self.cuts))]
             found = []
             for choice in product(self._times(*at[0]), *spans):
@@ -218,8 +218,8 @@ class Flows:
                 for (k, _), lines in zip(choice[1:], self.cuts, strict=True):
                     rank = rank * (len(lines) - 1) + k
                 found.append((rank, choice[0][0], tuple(x for _, x in choice if x)))
-            self._last = key, found
-        return self._last[1]
+            self._last[jumps] = key, found
+        return self._last[jumps][1]
 
     def _times(self, low: Fraction, high: Fraction) -> list[tuple[int, Pair | None]]:
         if low == high == 1:
@@ -250,10 +250,14 @@ class Flows:
 
     def _part(self, lines: Sequence[Fraction], k: int, low: Fraction, high: Fraction) -> Pair:
         """Middle and reach, in units, of a part of an interval that is mapped onto [-1, 1]."""
-        c, r = (lines[k] + lines[k + 1]) / 2, (lines[k + 1] - lines[k]) / 2
-        p, q = ((min(max(x, lines[k]), lines[k + 1]) - c) / r * (1 << self.bits) for x in (low, high))
-        middle = (p + q) // 2
-        return middle, -((middle - q) // 1)
+        (a, b), (c, d) = (x.as_integer_ratio() for x in lines[k : k + 2])
+        first, last, unit, ends = a * d, c * b, b * d, []
+        for n, m in (low.as_integer_ratio(), high.as_integer_ratio()):
+            above, below = 2 * n * unit - m * (first + last), m * (last - first)
+            ends.append((max(-below, min(above, below)) << self.bits, below))
+        (p, m), (q, n) = ends  # p/m and q/n in units
+        middle = (p * n + q * m) // (2 * m * n)
+        return middle, -((middle * n - q) // n)
 
     def _enclosed(self, place: Place, i: int, j: int, orders: tuple[int, ...], a: Arithmetic) -> Interval:
         cell, rank, at = place
@@ -270,7 +274,7 @@ class Flows:
         low, high = ((middle + s * reach) * factor.numerator for s in (-1, 1))
         if len(self._found) == MOST_KEPT:
             self._found.clear()
-        found = self._found[key, at, a.bits] = a.between(Fraction(low, below), Fraction(high, below))
+        found = self._found[key, at, a.bits] = a.quotients(low, high, below)
         return found
 
     def _polynomial(

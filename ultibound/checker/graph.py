@@ -15,7 +15,7 @@ from .matrices import Leaf, Matrix, Metric, metric
 from .model import Statement
 from .numerals import Rejected
 from .several import ball, gone_through, hull, matrix, moved, movements, numbers, shown, stated, stretch
-from .theorems import Line, Quantities, parted, require
+from .theorems import Line, Quantities, Variant, parted, require
 
 MOST_STANCES = 16
 OF_STANCE = ("metric", "range", "point", "squares", "trajectory", "largest-ball", "smaller-ball")
@@ -61,12 +61,12 @@ def toward(d: Derivation, after: Derivation) -> Derivation:
     return found
 
 
-def of_part(g: Graph | None, variant: int, part: str) -> Derivation:
+def of_part(g: Graph | None, variant: Variant, part: str) -> Derivation:
     """What a line about a stance, a step or (the part that has no name) all of them refers to."""
     if g is None or (part and part not in g.stances and part not in g.between):
         raise Rejected(f"{part}: no stance of the claim, nor a step from one to the next")
     if variant:
-        raise Unprovable(f"over[{variant}]: ranges for a proof of its own are not known between stances")
+        raise Unprovable("ranges for a proof of its own are not known between stances")
     return g.stances.get(part) or g.between.get(part) or g.first
 
 

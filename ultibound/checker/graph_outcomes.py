@@ -3,14 +3,17 @@
 from __future__ import annotations
 
 from fractions import Fraction
+from functools import partial
 from typing import Any
 
 from .derive import RANGED, Domain
+from .gains import intervals
 from .grammar import constant
 from .graph import Graph
 from .outcomes import SeveralResults
 from .results import GRAIN, LONG, MOST_STEPS, NOTHING, Outcome, Results, Route, Span, compared, less, opposed, verdict
 from .rules import Line, Proof, Rejected
+from .theorems import OWN
 
 ROUNDS = 400  # steps for which what is attained on every step is added up
 Levels = dict[str, Fraction]  # an error in the norm of each stance
@@ -20,7 +23,7 @@ class StanceResults(SeveralResults):
     """One stance: its set and norm, and what all stances together prove of its states."""
 
     def __init__(self, proof: Proof, graph: Graph, name: str, kept: dict[str, Domain] | None) -> None:
-        self.proof, self.variant, self.part, self.needed = proof, 0, name, set[int]()
+        self.proof, self.variant, self.part, self.needed = proof, OWN, name, set[int]()
         self.derivation = graph.stances[name]
         self.statement, self.states = self.derivation.statement, self.derivation.states
         self.state, self.any = self.states[0], self.statement.shrink
@@ -80,7 +83,7 @@ class StepResults(Results):
     """Gain and residual of one step, proved and surely taken: proofs/graph.md (2)."""
 
     def __init__(self, proof: Proof, before: StanceResults, after: StanceResults) -> None:
-        self.proof, self.variant, self.part, self.needed = proof, 0, f"{before.part}>{after.part}", set[int]()
+        self.proof, self.variant, self.part, self.needed = proof, OWN, f"{before.part}>{after.part}", set[int]()
         self.before, line = before, self.one("slope", "slope")
         self.shown = None if line is None else (line.concludes["gain"], line.concludes["residual"])
         if line is not None and (line.domain != before.domain or line.metric != after.metric):
@@ -93,12 +96,7 @@ class StepResults(Results):
     def stretched(self, proves: str) -> Fraction | None:
         """The largest norm surely taken."""
         lines = self.lines("stretch", proves) if self.before.lasting else []
-        found = [(x.concludes["lower"], n) for n, x in lines if x.domain == self.before.domain]
-        if not found:
-            return None
-        lower, number = max(found)
-        self.needed.add(number)
-        return max(lower, Fraction(0))
+        return self.surely((x.concludes["lower"], n) for n, x in lines if x.domain == self.before.domain)
 
 
 class GraphResults(Results):
@@ -107,7 +105,7 @@ class GraphResults(Results):
     def __init__(self, proof: Proof) -> None:
         if proof.graph is None:
             raise Rejected("no stances")
-        self.proof, self.graph, self.variant, self.needed = proof, proof.graph, 0, set[int]()
+        self.proof, self.graph, self.variant, self.needed = proof, proof.graph, OWN, set[int]()
         self.derivation, self.statement = self.graph.first, self.graph.statement
         self.states, self.any = self.derivation.states, self.statement.shrink
         invariant = self.one("graph-regions", "invariant") or self.one("graph-balls", "invariant")
@@ -357,4 +355,7 @@ def results_of(proof: Proof) -> Results:
     """What a proof amounts to: of one state, of several, or of named stances."""
     if proof.graph is not None:
         return GraphResults(proof)
-    return SeveralResults(proof) if len(proof.derivation.states) > 1 else Results(proof)
+    kind = SeveralResults if len(proof.derivation.states) > 1 else Results
+    found = kind(proof)
+    found.intervals = tuple(intervals(proof, partial(kind, proof), found.needed))
+    return found

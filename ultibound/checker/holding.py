@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+from fractions import Fraction
 from typing import Any
 
 from .derive import RANGED
@@ -35,7 +36,7 @@ def hold(results: Results, claimed: Any) -> None:
     for name, route in results.routes.items():
         pair(claimed["routes"][name], route, f"results.routes.{name}")
     same(claimed["metric"], results.norm(), "results.metric")
-    same(claimed["gain_intervals"], [], "results.gain_intervals")
+    gain_intervals(results, claimed["gain_intervals"])
     bands(results, claimed["sensitivities"])
     if not isinstance(claimed["requirements"], list) or len(claimed["requirements"]) != len(results.requirements):
         raise Rejected("results.requirements: one entry a requirement of the claim")
@@ -105,6 +106,46 @@ def bands(results: Results, claimed: Any) -> None:
         keys(entry, "results.sensitivities", "of by lower upper")
         same([entry["of"], entry["by"]], [r.state, r.by], "results.sensitivities")
         span({"lower": entry["lower"], "upper": entry["upper"]}, value, "results.sensitivities")
+
+
+def gain_intervals(results: Results, claimed: Any) -> None:
+    """`gain_intervals`: what lies within is proved, the gains outside are those refuted."""
+    place = "results.gain_intervals"
+    if not isinstance(claimed, list) or len(claimed) != len(results.intervals):
+        raise Rejected(f"{place}: one entry a gain that pieces are about")
+    for entry, found in zip(claimed, results.intervals, strict=True):
+        keys(entry, place, "gain inner outer contracting best")
+        same(entry["gain"], found.gain, f"{place}.gain")
+        within(entry["inner"], found.inner, f"{place}.inner")
+        within(entry["contracting"], found.contracting, f"{place}.contracting")
+        outer = [pair_end(x, f"{place}.outer") for x in two(entry["outer"], f"{place}.outer")]
+        for x, y in zip(outer, found.outer, strict=True):
+            if x is not None and x != y:
+                raise Rejected(f"{place}.outer: no requirement is refuted there, or at a nearer gain too")
+        if entry["best"] is not None:
+            keys(entry["best"], f"{place}.best", "value gain")
+            value, k = (quantity(entry["best"][x], f"{place}.best.{x}") for x in ("value", "gain"))
+            if found.best is None or value != found.best[0] or not k >= found.best[1]:
+                raise Rejected(f"{place}.best: more is claimed than was derived")
+
+
+def within(claimed: Any, derived: tuple[Fraction, Fraction] | None, place: str) -> None:
+    """An interval all of which was derived; null claims nothing."""
+    if claimed is None:
+        return
+    low, high = (quantity(x, place) for x in two(claimed, place))
+    if derived is None or not derived[0] <= low <= high <= derived[1]:
+        raise Rejected(f"{place}: more is claimed than was derived")
+
+
+def two(claimed: Any, place: str) -> list[Any]:
+    if not isinstance(claimed, list) or len(claimed) != 2:
+        raise Rejected(f"{place}: two ends")
+    return claimed
+
+
+def pair_end(claimed: Any, place: str) -> Fraction | None:
+    return None if claimed is None else quantity(claimed, place)
 
 
 def keys(claimed: Any, place: str, wanted: str) -> None:

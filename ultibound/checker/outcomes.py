@@ -9,12 +9,13 @@ from .grammar import constant
 from .matrices import Metric, dot
 from .results import NOTHING, Outcome, Results, Route, Span, compared, greater, less, opposed, verdict
 from .rules import Proof, Rejected
+from .theorems import OWN, Variant
 
 
 class SeveralResults(Results):
     """Everything `results` may claim of a claim of several states."""
 
-    def __init__(self, proof: Proof, variant: int = 0) -> None:
+    def __init__(self, proof: Proof, variant: Variant = OWN) -> None:
         self.proof, self.variant, self.needed = proof, variant, set[int]()
         self.derivation = proof.about(variant)
         self.statement, self.states = self.derivation.statement, self.derivation.states
@@ -50,7 +51,7 @@ class SeveralResults(Results):
         self.pushes = {s: self.pushed_along(s) for s in self.states}
         self.radii = {s: self.radius_along(s) for s in self.states}
         numbered = enumerate(self.statement.requirements, 1)
-        self.requirements = [self.required(n, r) for n, r in numbered if not variant or n == variant]
+        self.requirements = [self.required(n, r) for n, r in numbered if not variant.over or n == variant.over]
 
     def escapes(self) -> bool:
         """Whether a point leaves the region in some state."""
@@ -92,11 +93,7 @@ class SeveralResults(Results):
     def stretched(self, proves: str) -> Fraction | None:
         """The largest norm surely taken."""
         lines = self.lines("stretch", proves) if self.lasting else []
-        found = [(x.concludes["lower"], n) for n, x in lines if x.domain == self.domain]
-        if not found:
-            return None
-        self.needed.add(max(found)[1])
-        return max(max(found)[0], Fraction(0))
+        return self.surely((x.concludes["lower"], n) for n, x in lines if x.domain == self.domain)
 
     def grown(self) -> tuple[Fraction | None, bool]:
         """proofs/several.md (7): the gain that a product of Jacobians shows in any norm, and whether in any set too."""
@@ -140,11 +137,7 @@ class SeveralResults(Results):
     def farthest(self, s: str) -> Fraction | None:
         """How far a periodic orbit surely takes a state, again and again: proofs/several.md (6)."""
         lines = self.lines("periodic", "periodic") if self.lasting else []
-        found = [(line.concludes[s], n) for n, line in lines]
-        if not found:
-            return None
-        self.needed.add(max(found)[1])
-        return max(max(found)[0], Fraction(0))
+        return self.surely((line.concludes[s], n) for n, line in lines)
 
     def within(self) -> Fraction | None:
         """The least bound in the metric's norm."""

@@ -77,6 +77,8 @@ class Evaluator:
         self.chosen: dict[int, int] = {}  # the branch each of them is held to
         self.touching = False
         self.axes: dict[int, Evaluator | None] = {}
+        self.known: dict[int, Ends] = {}  # exact ends over the box of this run
+        self.shares: dict[tuple[int, int, int], list[Interval]] = {}  # where in a cell of a grid they are
         for k in sorted({k for each in (root, *beside) for k in terms.below(each)}):
             op, args, _ = self.all[k]
             if op == "variable" or op == "mark" or any(a not in self.fixed for a in args):
@@ -95,7 +97,8 @@ class Evaluator:
 
     def all_of(self, box: Box, gradient: bool, part: bool = False, touching: bool = False) -> dict[int, Jet]:
         """As `run`, the jets of all terms by rank."""
-        self.several, self.touching, self.sides = False, touching, {}
+        self.several, self.touching = False, touching
+        self.sides, self.known, self.shares = {}, {}, {}
         if not (part and self.second()):
             self.branch = {}
         jets = dict(self.fixed)
@@ -320,7 +323,7 @@ class Evaluator:
 
         def partial(*by: int) -> Interval:
             orders = [int(j in by) for j in range(len(axes))]
-            parts = [self.cell(library, column, cell, ends, orders) for cell in product(*cells)]
+            parts = [self.cell(library, column, cell, args, ends, orders) for cell in product(*cells)]
             return min(p[0] for p in parts), max(p[1] for p in parts)
 
         jet = Jet(partial())
@@ -390,6 +393,8 @@ class Evaluator:
 
     def exact(self, k: int, jet: Jet, box: Box) -> Ends:
         """Ends of an axis value: exact where it is rational, so that boxes cut at grid lines keep their cells."""
+        if k in self.known:
+            return self.known[k]
         if k not in self.axes:
             rational = all(self.all[x][0] in RATIONAL for x in self.terms.below(k))
             self.axes[k] = Evaluator(self.terms, k, "", self.names, (), Exact()) if rational else None
@@ -397,10 +402,17 @@ class Evaluator:
         if axis is not None:
             axis.chosen = self.chosen
         low, high = self.a.ends(jet.v) if axis is None else axis.run(box, False).v
+        self.known[k] = low, high
         return low, high
 
     def cell(
-        self, library: Library, column: str, cell: tuple[int, ...], ends: list[Ends], orders: list[int]
+        self,
+        library: Library,
+        column: str,
+        cell: tuple[int, ...],
+        args: tuple[int, ...],
+        ends: list[Ends],
+        orders: list[int],
     ) -> Interval:
         """Hull of a reading, or of its derivatives, over the part of one cell that is met: at its vertices."""
         a, grid = self.a, library.grid
@@ -413,16 +425,24 @@ class Evaluator:
                 self.nodes[column, flat] = a.number(library.columns[column][flat])
             corners.append(self.nodes[column, flat])
         for axis in range(len(cell)):
-            low, width = grid[axis][cell[axis]], grid[axis][cell[axis] + 1] - grid[axis][cell[axis]]
             half = len(corners) // 2  # the axis to be folded varies slowest; its values go to the fast end
             pairs = list(zip(corners[:half], corners[half:], strict=True))
             if orders[axis]:
+                width = grid[axis][cell[axis] + 1] - grid[axis][cell[axis]]
                 corners = [a.div(a.sub(q, p), a.number(width)) for p, q in pairs]
                 continue
-            inner = [min(max((e - low) / width, Fraction(0)), Fraction(1)) for e in ends[axis]]
-            shares = [a.number(t) for t in dict.fromkeys(inner)]
+            shares = self.share(args[axis], grid[axis], cell[axis], ends[axis])
             corners = [a.add(p, a.mul(t, a.sub(q, p))) for p, q in pairs for t in shares]
         return min(c[0] for c in corners), max(c[1] for c in corners)
+
+    def share(self, k: int, lines: tuple[Fraction, ...], i: int, ends: Ends) -> list[Interval]:
+        """How far along cell i of an axis its value, or each end of it, is: from 0 to 1."""
+        key = k, id(lines), i
+        if key not in self.shares:
+            low, width = lines[i], lines[i + 1] - lines[i]
+            inner = [min(max((e - low) / width, Fraction(0)), Fraction(1)) for e in ends]
+            self.shares[key] = [self.a.number(t) for t in dict.fromkeys(inner)]
+        return self.shares[key]
 
 
 def several(cells: Sequence[range]) -> bool:

@@ -44,6 +44,10 @@ class Scaled:
         b = -((-high.numerator << self.bits) // high.denominator)
         return self._held(a, b)
 
+    def quotients(self, low: int, high: int, below: int) -> Interval:
+        """[low, high] / below, for below > 0."""
+        return self._held((low << self.bits) // below, -((-high << self.bits) // below))
+
     def ends(self, a: Interval) -> tuple[Fraction, Fraction]:
         return Fraction(a[0], self.one[0]), Fraction(a[1], self.one[0])
 

@@ -2,14 +2,18 @@
 
 from __future__ import annotations
 
+from collections.abc import Iterable
 from dataclasses import dataclass, replace
 from fractions import Fraction
+from itertools import product
 from typing import Any
 
 from .derive import RANGED, Domain
+from .gains import Interval
 from .grammar import constant
 from .rules import Line, Proof, Rejected
-from .theorems import PAIRS, levels, magnitude, movement
+from .sector import applies
+from .theorems import OWN, PAIRS, Variant, ends, levels, magnitude, movement
 
 MOST_STEPS = 20_000
 LONG, GRAIN = 2000, 2**160  # bits of a denominator beyond which levels are rounded up, and to what
@@ -45,9 +49,10 @@ class Route:
 class Results:
     """Everything `results` may claim; `needed` collects the lines it rests on."""
 
+    intervals: tuple[Interval, ...] = ()  # of gains (gains.py)
     part = ""  # the stance the lines are about, or the step from one to the next (graph_outcomes.py)
 
-    def __init__(self, proof: Proof, variant: int = 0) -> None:
+    def __init__(self, proof: Proof, variant: Variant = OWN) -> None:
         self.proof, self.variant, self.needed = proof, variant, set[int]()
         self.unsupported = 0  # of what has to stay positive throughout a stance, the first that is not shown to
         self.derivation = proof.about(variant)
@@ -83,7 +88,7 @@ class Results:
         self.gain = self.contraction() if self.reported == "curve" else self.slopes(self.reported)
         self.push = self.pushed()
         numbered = enumerate(self.statement.requirements, 1)
-        self.requirements = [self.required(n, r) for n, r in numbered if not variant or n == variant]
+        self.requirements = [self.required(n, r) for n, r in numbered if not variant.over or n == variant.over]
 
     def by_state(self) -> dict[str, dict[str, Span | None]]:
         """Bound, sharp bound, radius and push of each state, as `results.states` has them."""
@@ -207,12 +212,34 @@ class Results:
         if name == "split":
             k, missed = far(self.attained(f"split-slope[{s},{s}]")), far(self.attained(f"split-residual[{s}]"))
             least = greater(least, self.moved_at_least(missed))
+        if name == "sector":
+            k, missed = self.within_sector(), far(self.attained(f"sector-residual[{s}]"))
+            least = greater(least, self.moved_at_least(missed))
         gain, residual = Span(k, line.concludes["gain"]), Span(least, line.concludes["residual"])
         bounded = self.one("ultimate-bound", f"bound[{name}]")
         if bounded is None:
             return Route(gain, residual)
         lower = None if k is None or least is None or k >= 1 else least / (1 - k)
         return Route(gain, residual, Span(greater(lower, self.orbit), bounded.concludes["bound"]))
+
+    def within_sector(self) -> Fraction | None:
+        """proofs/sector.md (4): the gain that a sensitivity and a slope of the correction, both surely taken, make."""
+        each: list[list[tuple[Line, int]]] = []
+        for kind in ("sensitivity", "gain"):
+            points = [(x, n) for n, x in self.lines("point", f"sector-{kind}[{self.state}]") if self.lasting]
+            if not points:
+                return None
+            if any(x.domain != self.domain for x, _ in points):
+                raise Rejected(f"sector-{kind}[{self.state}]: a point of another set")
+            most, least = max(points, key=lambda p: ends(p[0])[0]), min(points, key=lambda p: ends(p[0])[1])
+            each.append([most, least])
+        found = []
+        for (a, one), (b, other) in product(*each):
+            factors = [1 + c * m for c, m in product(ends(a), ends(b))]
+            found.append((max(min(factors), -max(factors), Fraction(0)), one, other))
+        least_gain, one, other = max(found)
+        self.needed.update((one, other))
+        return least_gain
 
     def chosen(self) -> str:
         """The route reported: the one asked for, else the one with the least bound."""
@@ -226,15 +253,20 @@ class Results:
         found = [self.slopes(n) for n in self.routes if n != "curve"]
         lowers = [g.lower for g in found if g.lower is not None]
         uppers = [g.upper for g in found if g.upper is not None]
-        every = len(lowers) == len(found) and (not self.statement.correction or "split" in self.routes)
+        every = len(lowers) == len(found) and all(x in self.routes for x in self.contracting())
         return Span(min(lowers, default=None) if every else None, min(uppers, default=None))
+
+    def contracting(self) -> list[str]:
+        """The routes of the claim whose gain is a contraction: proofs/attained.md (3)."""
+        more = ["split"] if self.statement.correction else []
+        return ["slope", *more, *(["sector"] if applies(self.statement) else [])]
 
     def slopes(self, name: str) -> Span:
         """The gain of a route; where its k is that at constant signals, under any course: proofs/signals.md (4)."""
         if name not in self.routes:
             return NOTHING
         gain = self.routes[name].gain
-        if name == "curve" or not self.derivation.loose(name):
+        if name in ("sector", "curve") or not self.derivation.loose(name):
             return gain
         proves = "split-signal-slope[" if name == "split" else "signal-slope["
         lines = [(n, x) for n, x in self.proof.lines.items() if (x.variant, x.rule) == (self.variant, "range")]
@@ -290,6 +322,14 @@ class Results:
             return line
         return None
 
+    def surely(self, found: Iterable[tuple[Fraction, int]]) -> Fraction | None:
+        """The largest of the sizes that lines show to be taken, by line; no size is below 0."""
+        largest = max(found, default=None)
+        if largest is None:
+            return None
+        self.needed.add(largest[1])
+        return max(largest[0], Fraction(0))
+
     def attained(self, proves: str) -> Span:
         """The largest value surely taken (upper) and the smallest (lower), by point lines."""
         high: tuple[Fraction, int] | None = None
@@ -334,9 +374,10 @@ class Results:
 
     def elsewhere(self, number: int) -> Outcome:
         """A requirement over ranges of its own: a set, routes and orbits of its own lines."""
-        if not any(x.variant == number for x in self.proof.lines.values()):
+        variant = Variant(self.variant.piece, number)
+        if not any(x.variant == variant for x in self.proof.lines.values()):
             return Outcome("undecided", None)
-        own = type(self)(self.proof, number)
+        own = type(self)(self.proof, variant)
         self.needed |= own.needed
         return own.requirements[0]
 
@@ -350,10 +391,9 @@ class Results:
     def gained(self, r: Any, c: tuple[Fraction, Fraction]) -> Outcome:
         """Refuted only where no route is left that might have a smaller gain: proofs/attained.md (3)."""
         asked = self.statement.route
-        span = self.slopes(asked) if asked in ("slope", "split") else self.contraction()
-        final = not self.any and (asked in ("slope", "split") or not self.statement.correction)
+        span = self.contraction() if asked in ("best", "curve") else self.slopes(asked)
         proved = self.whole and compared(r.relation, Span(None, span.upper), c)
-        return verdict(proved, final and opposed(r.relation, Span(None, span.lower), c), span)
+        return verdict(proved, not self.any and opposed(r.relation, Span(None, span.lower), c), span)
 
     def push_outcome(self, r: Any, c: tuple[Fraction, Fraction]) -> Outcome:
         """The largest push is not attained itself, so the constant has to be smaller: proofs/settling.md (2)."""

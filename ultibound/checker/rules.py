@@ -14,6 +14,7 @@ from .courses import arithmetic, orbit, path, place
 from .derive import Derivation, varied
 from .flows import trajectory
 from .forms import walk
+from .gains import narrowed, sensitivity_gain, stated
 from .graph import Graph, graph_of, of_part, seen_from, stepping
 from .jacobians import inside
 from .model import Statement
@@ -22,7 +23,7 @@ from .ranges import Evaluator
 from .reals import Undefined
 from .several import concluded
 from .squares import squares
-from .theorems import THEOREMS, Line, parted, shells
+from .theorems import THEOREMS, Line, Piece, Variant, parted, shells
 
 __all__ = ["Line", "Proof", "Rejected", "place", "quantity"]
 
@@ -36,6 +37,7 @@ SHAPES: dict[str, tuple[tuple[str, ...], tuple[str, ...] | None]] = {
     "course": ((), ()),
     "slope": ((), ("gain", "residual")),
     "split": ((), ("gain", "residual")),
+    "sector": ((), ("gain", "residual")),
     "shells": (("radii", "slope"), ()),
     "trajectory": (("bits", "cells", "cuts", "degrees", "pieces"), ("error",)),
     "curve": ((), ("gain", "residual", "sharp")),
@@ -57,9 +59,14 @@ SHAPES: dict[str, tuple[tuple[str, ...], tuple[str, ...] | None]] = {
     "graph-entries": (("after", "before", "bits", "trees"), None),  # one an entry
     "graph-componentwise": (("b", "p"), None),  # one a state of each stance
     "product": (("bits", "points", "power"), ("lower",)),
+    "gains": (("gain", "lower", "upper"), ()),
+    "sensitivity-gain": ((), ("best", "gain", "lower", "upper")),
     "squares": (("bits", "order", "pieces", "trees"), None),  # lower, upper, or both
 }
-NAMED = re.compile(r"(?:over\[([1-9][0-9]{0,3})\]:)?(?:([A-Za-z]\w*(?:>[A-Za-z]\w*)?):)?(.*)", re.ASCII | re.DOTALL)
+NUMBER = r"\[([1-9][0-9]{0,3})\]:"
+NAMED = re.compile(
+    rf"(?:gains{NUMBER})?(?:over{NUMBER})?(?:([A-Za-z]\w*(?:>[A-Za-z]\w*)?):)?(.*)", re.ASCII | re.DOTALL
+)
 
 
 def proof_of(statement: Statement) -> Proof:
@@ -75,16 +82,27 @@ class Proof:
     derivation: Derivation
     lines: dict[int, Line] = field(default_factory=dict)
     leaves: int = 0
-    variants: dict[int, Derivation] = field(default_factory=dict)
+    variants: dict[Variant, Derivation] = field(default_factory=dict)
     graph: Graph | None = None  # of named stances
 
-    def about(self, variant: int, part: str = "") -> Derivation:
-        """What the claim asks, or what it asks over the ranges of one requirement, or of a stance or a step."""
+    def about(self, variant: Variant, part: str = "") -> Derivation:
+        """What the claim asks, or what it asks over a piece of gains or the ranges of one requirement, or of a stance
+        or a step."""
         if self.graph is not None or part:
             return of_part(self.graph, variant, part)
         if variant and variant not in self.variants:
-            self.variants[variant] = Derivation(varied(self.derivation.statement, variant))
+            if variant.over:
+                statement = varied(self.about(Variant(variant.piece)).statement, variant.over)
+            else:
+                statement = narrowed(self.derivation, self.piece(variant.piece))
+            self.variants[variant] = Derivation(statement)
         return self.variants[variant] if variant else self.derivation
+
+    def piece(self, number: int) -> Piece:
+        for line in self.lines.values():
+            if line.piece is not None and line.proves == f"gains[{number}]":
+                return line.piece
+        raise Rejected(f"gains[{number}]: no line says which gains these are")
 
     def add(self, raw: Any) -> None:
         number = len(self.lines) + 1
@@ -102,8 +120,8 @@ class Proof:
         used = [self.lines[n] for n in uses]
         witness = raw["witness"]
         prefix = NAMED.fullmatch(proves)
-        variant, part = int(prefix[1] or 0) if prefix else 0, (prefix[2] or "") if prefix else ""
-        proves = prefix[3] if prefix else proves
+        variant = Variant(int(prefix[1] or 0), int(prefix[2] or 0)) if prefix else Variant()
+        part, proves = (prefix[3] or "", prefix[4]) if prefix else ("", proves)
         used = [seen_from(part, line) for line in used]
         if any(line.variant != variant for line in used):
             raise Rejected("uses: lines about other ranges")
@@ -112,6 +130,13 @@ class Proof:
             if self.graph is not None and (one := stepping(self.graph, part, rule, proves, used, witness, claimed)):
                 line = replace(one, uses=tuple(uses))
                 self.leaves += one.leaves
+            elif rule == "gains":
+                if variant:
+                    raise Rejected("a piece of gains is one of the claim itself")
+                line = Line(rule, proves, (), claimed, piece=stated(d, self.lines, proves, used, witness))
+            elif rule == "sensitivity-gain":
+                sensitivity_gain(d, proves, used, claimed)
+                line = Line(rule, proves, tuple(uses), claimed)
             elif rule == "trajectory":
                 if proves != "flow" or used or d.motion is None:
                     raise Rejected("a flow rests on no other line, and on dynamics")
@@ -158,7 +183,7 @@ class Proof:
                 raise Rejected("uses: the one line that gives the set")
             domain = used[0].domain
         meaning = d.meaning(proves, domain)
-        if used and proves.startswith(("target", "image")):
+        if used and proves.startswith(("target", "image", "sector-start")):
             raise Rejected("uses: this obligation rests on no set")
         if rule == "squares":
             if not proves.startswith("require["):

@@ -101,6 +101,25 @@ class Terms:
             total = self.put("sub", (total, m))
         return total
 
+    def factor(self, root: int, name: str) -> int | None:
+        """What a variable is multiplied by in a term; None where it is no factor of it (sensitivity-gain.md (2))."""
+        found: dict[int, int | None] = {}
+        for k in self.below(root):
+            op, args, payload = self.all[k]
+            parts, rest = [found[a] for a in args], None
+            if op == "variable" and payload == name:
+                rest = self.put("number", (), Fraction(1))
+            elif op == "mul" and parts[0] is not None:
+                rest = self.put("mul", (parts[0], args[1]))
+            elif op == "mul" and parts[1] is not None:
+                rest = self.put("mul", (args[0], parts[1]))
+            elif (op == "div" and parts[0] is not None) or (op == "neg" and parts[0] is not None):
+                rest = self.put(op, (parts[0], *args[1:]))
+            elif op in ("add", "sub") and parts[0] is not None and parts[1] is not None:
+                rest = self.put(op, (parts[0], parts[1]))
+            found[k] = rest
+        return found[root]
+
     def below(self, root: int) -> list[int]:
         """Every term the root is built from, in order, the root last."""
         marked = {root}

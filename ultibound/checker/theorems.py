@@ -4,15 +4,40 @@ from __future__ import annotations
 
 from dataclasses import dataclass, replace
 from fractions import Fraction
+from itertools import product
+from typing import NamedTuple
 
 from .derive import Derivation, Domain
 from .flows import Flows
 from .matrices import Matrix, Metric
 from .numerals import Rejected
+from .sector import RANGES
 
 Quantities = dict[str, Fraction]
 MOST_SHELLS = 999
-PAIRS = ("slope", "split", "curve")  # rules that conclude gain and residual
+PAIRS = ("slope", "split", "sector", "curve")  # rules that conclude gain and residual
+
+
+class Variant(NamedTuple):
+    """Whose ranges a line is about: those of a piece of gains, of a requirement's `over`; 0: the claim's own."""
+
+    piece: int = 0
+    over: int = 0
+
+    def __bool__(self) -> bool:
+        return self != (0, 0)
+
+
+OWN = Variant()
+
+
+@dataclass(frozen=True)
+class Piece:
+    """A gain, and ends between which it lies."""
+
+    gain: str
+    lower: Fraction
+    upper: Fraction
 
 
 @dataclass(frozen=True)
@@ -23,7 +48,8 @@ class Line:
     concludes: Quantities
     domain: Domain | None = None
     on_set: bool = False
-    variant: int = 0  # the requirement whose `over` the line is about, or 0
+    variant: Variant = OWN  # whose ranges the line is about
+    piece: Piece | None = None  # of gains, that a line states (gains.py)
     flows: Flows | None = None
     metric: Metric | None = None
     basis: tuple[Matrix, Matrix] | None = None  # of entries: rows and their inverse
@@ -96,6 +122,20 @@ def split(d: Derivation, proves: str, used: list[Line], claimed: Quantities) -> 
     if len(used) > 1 and used[1].domain != used[0].domain:
         raise Rejected("the residual refers to another set")
     return mean_value(d, proves, used, claimed, ("split", f"split-slope[{s},{s}]", f"split-residual[{s}]"))
+
+
+def sector(d: Derivation, proves: str, used: list[Line], claimed: Quantities) -> Domain | None:
+    """proofs/sector.md (2): k and ε from the bands of the sensitivity and of the correction's own slope."""
+    names = [f"sector-{x}[{d.state}]" for x in RANGES]
+    require(proves, "sector", used, [("range", x) for x in [*names, *movements(d)]])
+    sensitivity, slope, start, residual = used[:4]
+    if not sensitivity.domain == slope.domain == residual.domain:
+        raise Rejected("sensitivity, slope and residual refer to different sets")
+    k = max(abs(1 + c * m) for c, m in product(ends(sensitivity), ends(slope)))
+    rest = magnitude(residual) + magnitude(sensitivity) * magnitude(start) + movement(d, used[4:])
+    if not (claimed["gain"] >= k and claimed["residual"] >= rest):
+        raise Rejected("gain or residual: less than what the lines used show")
+    return sensitivity.domain
 
 
 def fewer(proves: str) -> str:
@@ -212,6 +252,7 @@ THEOREMS = {
     "invariant-region": invariant_region,
     "slope": slope,
     "split": split,
+    "sector": sector,
     "curve": curve,
     "invariant-ball": invariant_ball,
     "course": course,
@@ -237,3 +278,7 @@ def require(proves: str, name: str, used: list[Line], wanted: list[tuple[str, st
 
 def magnitude(line: Line) -> Fraction:
     return max(abs(line.concludes["lower"]), abs(line.concludes["upper"]))
+
+
+def ends(line: Line) -> tuple[Fraction, Fraction]:
+    return line.concludes["lower"], line.concludes["upper"]

@@ -129,6 +129,23 @@ class Graph:
         first, second = self.gates[product].args
         return second if first == factor else first
 
+    def factor(self, root: int, name: str) -> int | None:
+        """What a gate is, divided by a variable that is seen to be a factor of it (sensitivity-gain.md); or None."""
+        rest: dict[int, int | None] = {}
+        for k in self.reached((root,)):
+            gate = self.gates[k]
+            first, second = ([rest[a] for a in gate.args] + [None, None])[:2]
+            rest[k] = None
+            if gate.op == "variable" and gate.name == name:
+                rest[k] = self.number(1)
+            elif gate.op in ("add", "sub") and first is not None and second is not None:
+                rest[k] = self.add(gate.op, first, second)
+            elif gate.op in ("mul", "div", "neg") and first is not None:
+                rest[k] = self.add(gate.op, first, *gate.args[1:])
+            elif gate.op == "mul" and second is not None:
+                rest[k] = self.add("mul", gate.args[0], second)
+        return rest[root]
+
     def reached(self, roots: tuple[int, ...]) -> list[int]:
         """Gates the roots are built from, in order."""
         seen: set[int] = set()

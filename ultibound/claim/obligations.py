@@ -16,7 +16,7 @@ from .constants import constant
 from .errors import Bad
 from .graph import Graph
 from .model import Claim, Quantity, Range, Requirement, Stance
-from .motion import PHASE, Motion, copy, grown, landed, motion, supported
+from .motion import PHASE, TIME, Motion, copy, grown, landed, motion, supported
 from .resolve import Scope
 from .signals import excess, followed, instant
 
@@ -228,6 +228,38 @@ class Obligations:
         kept = g.add("sub", self._after({**bound, **self._uncorrected()}, s), self._scope(bound).name(s))
         shift = g.difference(self._after(at, s), self._after({**at, **self._uncorrected()}, s))
         return self._of(f"split-residual[{s}]", g.add("add", kept, shift), "", ranges)
+
+    def sector(self, domain: Domain) -> tuple[Obligation, Obligation, Obligation, Obligation]:
+        """sector-sensitivity[s], sector-gain[s], sector-start[s], sector-residual[s] (proofs/sector.md).
+
+        ∂F/∂n for a share of the one correction n, ∂n/∂s, n at the target, and N − s. Raises Bad where not known.
+        """
+        s, g, (by,) = self.state, self.graph, self.claim.correction
+        timely = {TIME, *(self.motion.states if self.motion is not None else ())}
+        if timely & set(g.variables(self._scope({}).name(by))):
+            raise Bad(f"{by} follows the stance itself, so it is not known as a factor of the error")
+        bound, ranges = self._set(domain)
+        share = f"share({by})"
+        part = g.add("mul", g.add("variable", name=share), self._scope(bound).name(by))
+        follows = self._scope({**bound, by: part}, by).name(f"next({s})")
+        if self._stirred(follows, by):
+            raise Bad(f"the effect of a signal within the stance follows {by}, so no sensitivity by it is known")
+        nominal = self._scope({**bound, **self._uncorrected()}).name(f"next({s})")
+        start = self._scope({s: self._scope({}).name(f"target({s})")}).name(by)
+        return (
+            self._of(f"sector-sensitivity[{s}]", follows, by, {**ranges, share: WHOLE}),
+            self._of(f"sector-gain[{s}]", self._scope(bound, s).name(by), s, ranges),
+            self._of(f"sector-start[{s}]", g.difference(start, g.number(0))),
+            self._of(f"sector-residual[{s}]", g.difference(nominal, self._scope(bound).name(s)), "", ranges),
+        )
+
+    def factor(self, domain: Domain, gain: str) -> Obligation:
+        """sector-factor[s,h]: ∂a/∂s over the set, where the one correction is h·a. Raises Bad where it is not."""
+        s, (bound, ranges), (by,) = self.state, self._set(domain), self.claim.correction
+        found = self.graph.factor(self._scope(bound, s).name(by), gain)
+        if found is None:
+            raise Bad(f"{gain} is no factor of {by}")
+        return self._of(f"sector-factor[{s},{gain}]", found, s, ranges)
 
     def _uncorrected(self) -> dict[str, int]:
         return dict.fromkeys(self.claim.correction, self.graph.number(0))

@@ -6,8 +6,9 @@ from dataclasses import replace
 from fractions import Fraction
 
 from .constants import constant
-from .errors import Bad
-from .model import Claim, Quantity, Requirement
+from .errors import Bad, nearest
+from .expression import Expression, Node
+from .model import Claim, Quantity, Range, Requirement
 from .obligations import RANGED, Domain, Obligations
 
 MOST_STATES = 6
@@ -32,6 +33,27 @@ def varied(claim: Claim, number: int) -> Claim:
         stances=(replace(stance, states=states),),
         requirements=tuple(replace(x, over={}) if x is r else x for x in claim.requirements),
     )
+
+
+def narrowed(claim: Claim, gain: str, low: Fraction, high: Fraction) -> Claim:
+    """The claim with a gain that is not known but for its ends, the same at every step (proofs/sensitivity-gain.md)."""
+    ends = Range(*(Expression(str(x), (Node("number", value=x),)) for x in (low, high)))
+    gains = {n: e for n, e in claim.gains.items() if n != gain}
+    return replace(claim, gains=gains, uncertain={**claim.uncertain, gain: Quantity(gain, ends, held=True)})
+
+
+def not_followed(claim: Claim, gain: str) -> str | None:
+    """Why no interval of a gain can be proved, in one line; None if one can."""
+    if gain not in claim.gains:
+        return f"gains: {gain[:60]!r} is not among them{nearest(gain, claim.gains)}"
+    if claim.stances[0].name:
+        return f"gains.{gain}: intervals of gains are not known between stances yet; use --set for each value"
+    for number, r in enumerate(claim.requirements, 1):
+        exponents, ends = _folded(claim, r)
+        if gain in exponents | ends:
+            why = "an exponent" if gain in exponents else "the end of a range, a weight, or a bound asked for"
+            return f"gains.{gain}: also sets {why} (seen with require[{number}]), taken at its value; use --set"
+    return None
 
 
 def of_stance(claim: Claim, name: str) -> Claim:
@@ -62,8 +84,8 @@ def not_yet(claim: Claim) -> str | None:
         return "horizon: a signal within the stance is followed for one step at a time only; remove the key"
     if claim.horizon > 1 and any(q.change is not None and q.values is not None for q in claim.uncertain.values()):
         return "horizon: a held quantity of a finite list that changes is followed for one step at a time only, yet"
-    if claim.route == "sector":
-        return "route: sector cannot be proved yet; use slope, split, curve or best"
+    if claim.route == "sector" and (why := _no_sector(claim)) is not None:
+        return f"route: sector {why}"
     if claim.route == "split" and not claim.correction:
         return "route: split tells a correction apart; name it in `correction`, or use another route"
     for name, w in claim.weights.items() if several else ():
@@ -90,6 +112,19 @@ def not_yet(claim: Claim) -> str | None:
         if unfollowed:
             why = "it also sets an exponent, the end of a range or the bound asked for, which is taken at its value"
             return f"require[{number}]: {unfollowed[0]} cannot be followed: {why}; use --set for each value"
+    return None
+
+
+def _no_sector(claim: Claim) -> str | None:
+    """Why a claim of one state does not have the route sector; None where it does."""
+    if len(claim.correction) != 1:
+        return "follows one correction; name exactly one in `correction`, or use another route"
+    if claim.horizon > 1:
+        return "is known for one step at a time only; remove the horizon, or use another route"
+    try:
+        Obligations(claim).sector(Domain("region", Fraction(0), (Fraction(0), Fraction(0))))
+    except Bad as problem:
+        return f"is not known here: {problem}"
     return None
 
 

@@ -51,6 +51,35 @@ class Errors:
         return found
 
 
+@dataclass(slots=True)
+class Part:
+    """The cells and pieces met by the boxes of some `rows`, one after another: each is met by the box `owner`.
+
+    `widths`: of the piece, and half of the cell by each parameter; `centre`: of what is met, in units of the cell, and
+    `powers` the monomials of its reach; `time`: middle and reach in the piece, None at touchdown.
+    """
+
+    rows: slice
+    starts: Any
+    owner: Any
+    cell: Any
+    piece: Any
+    widths: list[Floats]
+    centre: Floats
+    powers: Floats
+    time: Pair | None
+    last: tuple[tuple[int, int, int], Floats] | None = None  # of the entry and order last read
+
+
+@dataclass(frozen=True, slots=True)
+class Met:
+    """Where boxes are read: whether `outside` the cuts, grid cells by argument, and parts of cells and pieces."""
+
+    outside: Any
+    branch: Branch
+    parts: list[Part]
+
+
 class FlowTable:
     """Φ_ij as polynomials a cell and a piece, c + r τ = p: Σ coefficients[cell, piece, column, i, α, k] T_k(s) τ^α.
 
@@ -87,11 +116,15 @@ class FlowTable:
     def read(
         self, i: int, j: int, orders: tuple[int, ...], axes: Sequence[Pair], count: int, branch: Branch | None
     ) -> tuple[Pair, Branch]:
-        """Range a box of Φ_ij differentiated `orders` times by (σ, *parameters), and the grid cells met.
+        """Range a box of Φ_ij differentiated `orders` times by (σ, *parameters), and the grid cells met."""
+        met = self.met(axes, count, branch)
+        return self.range(i, j, orders, met), met.branch
 
-        `axes` are the ends of σ and of every parameter, a box; nan outside the cuts and beyond second derivatives.
-        The branch names first grid cell and count an argument (0 and 1 where it is no library axis); if given, only
-        cells within it are used.
+    def met(self, axes: Sequence[Pair], count: int, branch: Branch | None) -> Met:
+        """Cells and pieces that boxes need, for every entry and derivative that is read there.
+
+        `axes` are the ends of σ and of every parameter, a box. The branch names first grid cell and count an argument
+        (0 and 1 where it is no library axis); if given, only cells within it are used.
         """
         wide = [(np.broadcast_to(low, (count,)), np.broadcast_to(high, (count,))) for low, high in axes]
         found_firsts, found_spans = [np.zeros(count, int)], [np.ones(count, int)]
@@ -119,21 +152,21 @@ class FlowTable:
         first, last, _ = _met(self.pieces, *share)
         firsts.append(first)
         spans.append(np.maximum(last - first, 0) + 1)
-        many = np.where(outside | (sum(orders) > MOST_ORDERS), 1, np.prod(spans, axis=0))
-        low, high = np.full(count, np.nan), np.full(count, np.nan)
-        if sum(orders) <= MOST_ORDERS:
-            size = len(self.terms.exponents) * (self.degrees[0] + 1)
-            for rows in _portions(many, max(1, AT_ONCE // size)):
-                part = [(a[rows], b[rows]) for a, b in wide]
-                ends = self._cells(i, j, orders, part, [f[rows] for f in firsts], [s[rows] for s in spans], many[rows])
-                low[rows], high[rows] = ends
-        found = found_firsts, found_spans
-        return (np.where(outside, np.nan, low), np.where(outside, np.nan, high)), found
+        many = np.where(outside, 1, np.prod(spans, axis=0))
+        size = len(self.terms.exponents) * (self.degrees[0] + 1)
+        parts = [
+            self._part(
+                rows,
+                [(a[rows], b[rows]) for a, b in wide],
+                [f[rows] for f in firsts],
+                [s[rows] for s in spans],
+                many[rows],
+            )
+            for rows in _portions(many, max(1, AT_ONCE // size))
+        ]
+        return Met(outside, (found_firsts, found_spans), parts)
 
-    def _cells(
-        self, i: int, j: int, orders: tuple[int, ...], wide: list[Pair], firsts: list[Any], spans: list[Any], many: Any
-    ) -> Pair:
-        """Hull over the cells and pieces met, a box."""
+    def _part(self, rows: slice, wide: list[Pair], firsts: list[Any], spans: list[Any], many: Any) -> Part:
         starts = np.cumsum(many) - many
         owner = np.repeat(np.arange(len(many)), many)
         rank = np.arange(len(owner)) - starts[owner]
@@ -144,58 +177,71 @@ class FlowTable:
             rank = rank // span[owner]
         *cells, piece = index
         cell = np.zeros(len(owner), int)
-        centre, radius, unit = [], [], np.ones(len(owner))
+        centre, radius, halves = [], [], []
         for k, c in enumerate(cells):
             cell = cell * len(self.middles[k]) + c
-            half = self.halves[k][c]
-            unit = unit * half ** orders[k + 1]
-            a, b = (np.clip((x[owner] - self.middles[k][c]) / half, -1, 1) for x in wide[k + 1])
+            halves.append(self.halves[k][c])
+            a, b = (np.clip((x[owner] - self.middles[k][c]) / halves[k], -1, 1) for x in wide[k + 1])
             centre.append((a + b) / 2)
             radius.append((b - a) / 2)
-        length = self.pieces[piece + 1] - self.pieces[piece]
-        unit = unit * length ** orders[0]
         none = np.zeros((len(owner), 0))
         to, reach = (np.stack(x, axis=1) if x else none for x in (centre, radius))
-        low, high = self._polynomials(i, j, orders, wide[0], owner, cell, piece, to, reach)
-        error = self.errors.of(orders[0], orders[1:], cell, piece, self.degrees[0])
+        powers, time = self.terms.at(reach), None
+        f, g = self.pieces[piece], self.pieces[piece + 1]
+        if not (np.all(wide[0][0] == 1) and np.all(wide[0][1] == 1)):
+            a, b = (np.clip((x[owner] + 1 - 2 * f) / (g - f) - 1, -1, 1) for x in wide[0])
+            time = (a + b) / 2, (b - a) / 2
+        return Part(rows, starts, owner, cell, piece, [g - f, *halves], to, powers, time)
+
+    def range(self, i: int, j: int, orders: tuple[int, ...], met: Met) -> Pair:
+        """Range a box of Φ_ij differentiated `orders` times by (σ, *parameters).
+
+        nan outside the cuts and beyond second derivatives.
+        """
+        low, high = np.full(len(met.outside), np.nan), np.full(len(met.outside), np.nan)
+        for part in met.parts if sum(orders) <= MOST_ORDERS else ():
+            low[part.rows], high[part.rows] = self._hull(i, j, orders, part)
+        return np.where(met.outside, np.nan, low), np.where(met.outside, np.nan, high)
+
+    def _hull(self, i: int, j: int, orders: tuple[int, ...], part: Part) -> Pair:
+        """Hull over the cells and pieces met, a box."""
+        unit = np.ones(len(part.owner))
+        for width, order in zip((*part.widths[1:], part.widths[0]), (*orders[1:], orders[0]), strict=True):
+            unit = unit * width**order
+        low, high = self._polynomials(i, j, orders, part)
+        error = self.errors.of(orders[0], orders[1:], part.cell, part.piece, self.degrees[0])
         low, high = (low - error) / unit, (high + error) / unit
-        if len(owner) > len(many):
-            low, high = np.minimum.reduceat(low, starts), np.maximum.reduceat(high, starts)
+        if len(part.owner) > len(part.starts):
+            low, high = np.minimum.reduceat(low, part.starts), np.maximum.reduceat(high, part.starts)
         return low, high
 
-    def _polynomials(
-        self,
-        i: int,
-        j: int,
-        orders: tuple[int, ...],
-        time: Pair,
-        owner: Any,
-        cell: Any,
-        piece: Any,
-        to: Floats,
-        reach: Floats,
-    ) -> Pair:
+    def _polynomials(self, i: int, j: int, orders: tuple[int, ...], part: Part) -> Pair:
         """Value at the centre of each part, plus or minus the magnitudes of everything else about it."""
-        if np.all(time[0] == 1) and np.all(time[1] == 1):
-            local, spread = self._end(i, j, orders[0])[cell][:, :, None], np.zeros(len(owner))
-        else:
-            f, g = self.pieces[piece], self.pieces[piece + 1]
-            a, b = (np.clip((x[owner] + 1 - 2 * f) / (g - f) - 1, -1, 1) for x in time)
-            degree, spread = self.degrees[0], (b - a) / 2
-            last = max(degree, orders[0]) if np.any(spread > 0) else orders[0]
-            weights = expanded((a + b) / 2, degree, orders[0], last)
-            weights *= factorials(orders[0], last)[:, None]
-            column = j - 1 if j else self.columns - 1
-            local = self.coefficients[cell, piece, column, i - 1] @ weights.transpose(0, 2, 1)
-        local = self.terms.shifted(local, to)
         target, source, factor = self.terms.slope(orders[1:])
         if not len(target):
-            return np.zeros(len(owner)), np.zeros(len(owner))
-        local = local[:, source] * factor[:, None]
-        scale = self.terms.at(reach)[:, target, None] * spread[:, None, None] ** np.arange(local.shape[2])
+            return np.zeros(len(part.owner)), np.zeros(len(part.owner))
+        local = self._about_centres(i, j, orders[0], part)[:, source] * factor[:, None]
+        spread = np.zeros(len(part.owner)) if part.time is None else part.time[1]
+        scale = part.powers[:, target, None] * spread[:, None, None] ** np.arange(local.shape[2])
         middle = local[:, 0, 0]  # the constant is left by the lowest monomial, which stands first
         rest = (np.abs(local) * scale).sum(axis=(1, 2)) - np.abs(middle)
         return middle - rest, middle + rest
+
+    def _about_centres(self, i: int, j: int, order: int, part: Part) -> Floats:
+        """Coefficients by τ and s about the centre of each part, (parts, monomials, powers of s); of a rate too."""
+        key = i, j, order
+        if part.last is None or part.last[0] != key:
+            if part.time is None:
+                local = self._end(i, j, order)[part.cell][:, :, None]
+            else:
+                degree = self.degrees[0]
+                last = max(degree, order) if np.any(part.time[1] > 0) else order
+                weights = expanded(part.time[0], degree, order, last)
+                weights *= factorials(order, last)[:, None]
+                column = j - 1 if j else self.columns - 1
+                local = self.coefficients[part.cell, part.piece, column, i - 1] @ weights.transpose(0, 2, 1)
+            part.last = key, self.terms.shifted(local, part.centre)
+        return part.last[1]
 
     def _end(self, i: int, j: int, order: int) -> Floats:
         """Coefficients by τ of Φ_ij, or of a derivative by s, at touchdown: (cells, monomials)."""

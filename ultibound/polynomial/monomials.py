@@ -32,6 +32,7 @@ class Monomials:
                 binomial = [float(comb(self.exponents[k][axis], m)) for k in source]
                 moves.append((np.array(source), np.array(target), np.array(binomial)))
             self._moves.append(moves)
+        self._slopes: dict[tuple[int, ...], tuple[Any, Any, Floats]] = {}
 
     def at(self, points: Floats) -> Floats:
         """Values of the monomials at points (…, size): (…, count)."""
@@ -53,13 +54,16 @@ class Monomials:
 
     def slope(self, orders: Sequence[int]) -> tuple[Any, Any, Floats]:
         """Ranks of the monomials left by a derivative, of those they come from, and the factors."""
+        if tuple(orders) in self._slopes:
+            return self._slopes[tuple(orders)]
         target, source, factor = [], [], []
         for k, a in enumerate(self.exponents):
             if all(x >= o for x, o in zip(a, orders, strict=True)):
                 source.append(k)
                 target.append(self.rank[tuple(x - o for x, o in zip(a, orders, strict=True))])
                 factor.append(float(np.prod([perm(x, o) for x, o in zip(a, orders, strict=True)])))
-        return np.array(target, int), np.array(source, int), np.array(factor)
+        found = self._slopes[tuple(orders)] = np.array(target, int), np.array(source, int), np.array(factor)
+        return found
 
 
 def _less(exponents: tuple[int, ...], axis: int, by: int) -> tuple[int, ...]:

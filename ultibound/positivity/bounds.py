@@ -8,7 +8,7 @@ from math import inf
 
 import numpy as np
 
-from .gram import SOLVERS, Exponents, Floats, relaxed
+from .gram import SOLVERS, Exponents, Floats, bases, entries, relaxed
 from .identity import Identity, identity
 
 ACCURACIES = (1e-4, 1e-6, 1e-8, 1e-10)  # of rounded factors
@@ -18,8 +18,8 @@ STEPS = [0.5 / 2 ** (k / 4) for k in range(80)]  # of the improvement of samples
 SIGNS = np.array([-1.0, 0.0, 1.0])
 
 
-def least_sampled(p: dict[Exponents, Fraction], count: int) -> float:
-    """The smallest value at seeded samples, many of them on faces, the best improved along axes; an estimate."""
+def least_sampled(p: dict[Exponents, Fraction], count: int) -> tuple[float, Floats]:
+    """The smallest value at seeded samples, many of them on faces, some improved along axes, and where; an estimate."""
     powers = np.array(list(p), dtype=np.int64).reshape(len(p), count)
     c = np.array([float(x) for x in p.values()])
 
@@ -39,7 +39,14 @@ def least_sampled(p: dict[Exponents, Fraction], count: int) -> float:
         flat = np.clip(moves.reshape(-1, count), -1, 1)
         picked = values(flat).reshape(len(best), -1).argmin(axis=1)
         best = flat.reshape(len(best), -1, count)[np.arange(len(best)), picked]
-    return float(values(best).min())
+    found = values(best)
+    return float(found.min()), np.asarray(best[found.argmin()])
+
+
+def work(p: dict[Exponents, Fraction]) -> int:
+    """Entries of the Gram matrices of the least degree: what a programme takes grows with their square, or so."""
+    active = sum(any(e[i] for e in p) for i in range(max(map(len, p), default=0)))
+    return entries(bases(active, max(2, max(map(sum, p), default=0) + 1 & ~1), range(active)))
 
 
 def bounded_below(
@@ -54,7 +61,7 @@ def bounded_below(
     count = max(map(len, p), default=0)
     active = [i for i in range(count) if any(e[i] for e in p)]
     inner = {tuple(e[i] for i in active): c for e, c in p.items()}
-    low, said, best = least_sampled(inner, len(active)), list[str](), None
+    (low, _), said, best = least_sampled(inner, len(active)), list[str](), None
     wanted = enough if enough <= low else low - gap
     for found in identities(inner, len(active), said):
         if best is None or found.bound > best.bound:

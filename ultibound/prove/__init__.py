@@ -7,6 +7,7 @@ certificate is checked again from its bytes before anyone sees it.
 from __future__ import annotations
 
 import time
+from dataclasses import replace
 
 from ..bounding.defined import undefined_point
 from ..bounding.evaluate import to_float
@@ -15,7 +16,8 @@ from ..certificate.enclosing import Watch
 from ..certificate.remarks import STOPS
 from ..checker import Verdict, check
 from ..claim import Bad, Claim, ClaimError
-from ..claim.provable import not_yet, of_stance, varied
+from ..claim.provable import not_followed, not_yet, of_stance, varied
+from .gains import Interval
 from .graph import GraphAttempt
 from .one import Attempt, Known, apart, best
 from .several import SeveralAttempt
@@ -30,14 +32,17 @@ class InternalError(Exception):
     """The checker refuses a certificate that was just built: a defect of this program."""
 
 
-def prove(claim: Claim, watch: Watch | None = None) -> Certificate:
+def prove(claim: Claim, watch: Watch | None = None, gain_interval: str | None = None) -> Certificate:
     """Proves what it can of a claim and returns a certificate that the checker has accepted.
+
+    `gain_interval`: also an interval of that gain on all of which every requirement is proved, the nearest gains at
+    which one is refuted, and the gains that contract (proofs/sensitivity-gain.md).
 
     Raises ClaimError where the claim cannot be used (undefined at a point of its region, target outside, or of a
     kind that cannot be proved yet). Ctrl-C stops the search; what was proved by then is kept, and the certificate
     says so (`interrupted`).
     """
-    problem = not_yet(claim)
+    problem = not_yet(claim) or (None if gain_interval is None else not_followed(claim, gain_interval))
     if problem is not None:
         raise ClaimError.of(claim.place, *problem.split(": ", 1))
     try:
@@ -46,12 +51,12 @@ def prove(claim: Claim, watch: Watch | None = None) -> Certificate:
             undefined = undefined_point(c)
             if undefined is not None:
                 raise ClaimError.of(claim.place, *undefined)
-        return _proved(claim, watch or (lambda stage, leaves, high: None))
+        return _proved(claim, watch or (lambda stage, leaves, high: None), gain_interval)
     except Bad as why:
         raise ClaimError.of(claim.place, "", str(why)) from None
 
 
-def _proved(claim: Claim, watch: Watch) -> Certificate:
+def _proved(claim: Claim, watch: Watch, gain: str | None) -> Certificate:
     """The certificate of a claim that can be used: tried at smaller gaps while that may decide a requirement."""
     kind: type[Attempt] = SeveralAttempt if len(claim.stances[0].states) > 1 else Attempt
     if claim.stances[0].name:
@@ -73,11 +78,13 @@ def _proved(claim: Claim, watch: Watch) -> Certificate:
         cut = any(x in STOPS for x in attempt.ranges.limits.values())  # a smaller gap would meet the same limit
         if cut or not attempt.pursue or gap < FINEST or attempt.ranges.interrupted or late:
             break
+    if gain is not None and not kept.ranges.interrupted:
+        Interval(kept, gain, to_float(claim.gap), until, watch).search()
     certificate = kept.certificate
-    verdict = _checked(certificate, attempt)
+    verdict = _checked(certificate, kept)
     if verdict.status != "valid":
         raise InternalError(f"{verdict.place}: {verdict.reason}")
-    return certificate
+    return replace(certificate, accepted=verdict)
 
 
 def _checked(certificate: Certificate, attempt: Attempt) -> Verdict:

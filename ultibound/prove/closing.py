@@ -133,7 +133,7 @@ def box(wide: Sequence[Fraction]) -> Metric:
 
 
 def draws_in(
-    a: SeveralAttempt, on: int, domain: Domain, wide: Sequence[Fraction], moves: list[int], effort: tuple[float, int]
+    a: SeveralAttempt, on: int, domain: Domain, wide: Sequence[Fraction], moves: list[int], look: Look
 ) -> None:
     """A polytope that trajectories are drawn into, of about that width in each state: proofs/polytope.md."""
     w, lines, whole = a.writer, a.writer.proof.lines, a.writer.domain(on)

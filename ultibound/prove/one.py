@@ -22,7 +22,8 @@ from ..checker.flows import Flows
 from ..checker.graph_outcomes import results_of
 from ..checker.reals import Undefined
 from ..checker.rules import Rejected
-from ..checker.theorems import levels, movement, sharpest
+from ..checker.sector import applies
+from ..checker.theorems import Variant, levels, movement, sharpest
 from ..claim import Bad, Claim, ClaimError
 from ..claim.constants import constant
 from ..claim.obligations import RANGED, Domain, Obligation, Obligations
@@ -39,6 +40,8 @@ DECIDED = 0.5  # gap at which the sign of what is not near zero is known
 ACCURACY = 4e-12  # of the trial trajectories, relative to the largest of them
 PADDING = 1e-3  # what a library axis may take beyond what the search found
 TARGET_GAP = 1e-8  # suprema are taken over a ball larger by as much: proofs/invariant-set.md (4)
+LEAST_SHARE = 1e-3  # of the gap, for a factor of the sector route that nearly cancels
+ROUGHER = 10  # the gap of that route's residual, where another is reported, over that of the others
 SPARE = 0.01  # share of a smaller ball's radius left free
 MOST_ROUGH = 300  # cells of a library over which no curve is followed unless one is asked for
 ROUGH, QUICK, FEW, MOST = 3e-2, 8, 1, 60  # gap, leaves a shell and shells of a rough curve; shells of a sharp one
@@ -65,7 +68,7 @@ def best(whole: Attempt) -> Attempt:
         return whole
     attempt = Attempt(
         whole.claim, whole.gap, whole.until, whole.watch, whole.sharp, whole.smaller, whole.variant, whole.derivation,
-        whole.known,
+        whole.known, whole.terse,
     )  # fmt: skip
     return attempt if attempt.results.settled and attempt.decided >= whole.decided else whole
 
@@ -75,7 +78,8 @@ class Attempt:
 
     `sharp`: the error curve is followed to the gap, not just roughly. `within`: a radius smaller than the largest.
     `variant`, `derivation`: one requirement over ranges of its own, and what the checker derives for it.
-    `known`: flows of the stance that were proved in an earlier pass.
+    `known`: flows of the stance that were proved in an earlier pass. `terse`: only the verdicts count, with nothing
+    said to people and no second argument for what one shows.
     """
 
     writes: type[Writer] = Writer
@@ -91,7 +95,9 @@ class Attempt:
         variant: int = 0,
         derivation: Derivation | None = None,
         known: Known | None = None,
+        terse: bool = False,
     ) -> None:
+        self.terse = terse
         self.claim, self.gap, self.until, self.watch = claim, gap, until, watch
         self.sharp, self.within = sharp, within
         self.variant, self.derivation, self.known = variant, derivation, {} if known is None else known
@@ -106,8 +112,8 @@ class Attempt:
         for number in () if variant else apart(claim):
             self._over(number)
         self.results = results_of(self.writer.proof)
-        remarks = self._remarks()
-        self.pursue = any(p for _, p in remarks)
+        self.remarks = self._remarks()
+        self.pursue = any(p for _, p in self.remarks)
         waiting = {
             r.kind
             for r, o in zip(claim.requirements, self.results.requirements, strict=True)
@@ -120,14 +126,24 @@ class Attempt:
             and bool(waiting & {"settles", "bound", "push", "steps", "radius"})
         )
         self.decided = sum(r.verdict != "undecided" for r in self.results.requirements)
-        text = assembled(claim, self.results, remarks)
-        self.certificate = sealed(claim, text, self.writer.pruned(self.results.needed), self.ranges.interrupted)
+        if not terse:
+            self.seal()
+
+    def seal(self) -> None:
+        """The certificate of what is on the proof."""
+        text = assembled(self.claim, self.results, self.remarks)
+        lines = self.writer.pruned(self.results.needed)
+        self.certificate = sealed(self.claim, text, lines, self.ranges.interrupted)
 
     def _remarks(self) -> list[tuple[str | None, bool]]:
         """What limits each requirement, and whether a smaller gap may decide it."""
         state = Search(self.ranges.limits, self.ranges.interrupted, self.near_region)
         told = Explained(self.obligations, self.ranges, self.results, self.moved)
-        return Remarks(self.claim, self.obligations, self.results, state, told).all()
+        remarks = Remarks(self.claim, self.obligations, self.results, state, told)
+        if not self.terse:
+            return remarks.all()
+        open_ = [o.verdict == "undecided" and not self.results.unsupported for o in self.results.requirements]
+        return [(None, x and remarks.open(n)) for n, x in enumerate(open_, 1)]
 
     def _prove(self) -> None:
         """Lines for the certified set, the routes on it, orbits in it, and the requirements."""
@@ -151,6 +167,7 @@ class Attempt:
         if not lost:
             self._slope(domain, on, moves)
             self._split(domain, on, moves)
+            self._sector(domain, on, moves)
         if radius > 0:
             self._curve(domain, on, moves, lost)
         invariant = region or self._invariant_ball(ball)
@@ -252,7 +269,7 @@ class Attempt:
                 self._inequality(number, obligation, on, points)
                 return
             self.ranges.enclose(obligation, on, points=points)
-            if r.kind == "sensitivity":  # by an argument of its own, as near as another
+            if r.kind == "sensitivity" and not self.terse:  # by an argument of its own, as near as another
                 self._squared(number, on, {"lower": inf, "upper": -inf})
         except Bad as why:
             self.ranges.limits[name] = str(why)
@@ -262,9 +279,13 @@ class Attempt:
         side = 1 if self.claim.requirements[number - 1].relation in ("<", "<=") else -1
         few = min(FIRST + 8 * prod(len(v.cells) for v in obligation.variables), self.claim.cells)
         found = self.ranges.search(obligation, False, DECIDED, side=side, cells=few)
-        if found.stopped == "cells" and self._squared(number, on, {"upper" if side > 0 else "lower": 0.0}):
-            self.ranges.enclose(obligation, on, points=points, gap=DECIDED, side=side, cells=min(UNASKED, few))
-            return
+        if found.stopped == "cells":
+            breaking, shown = self._squared(number, on, {"upper" if side > 0 else "lower": 0.0})
+            if breaking and points:
+                self.ranges.point(obligation, breaking, on)
+            if breaking or shown:
+                self.ranges.enclose(obligation, on, points=points, gap=DECIDED, side=side, cells=min(UNASKED, few))
+                return
         if found.stopped == "cells" and few < self.claim.cells:
             found = self.ranges.search(obligation, False, DECIDED, side=side)
         if min(found.upper * side, found.lower * side) < 0 or (found.upper if side > 0 else -found.lower) < 0:
@@ -272,31 +293,36 @@ class Attempt:
         else:
             self.ranges.enclose(obligation, on, points=points)
 
-    def _squared(self, number: int, on: int, enough: dict[str, float]) -> bool:
+    def _squared(self, number: int, on: int, enough: dict[str, float]) -> tuple[dict[str, Fraction], bool]:
         """Ends of a requirement by sums of squares, which use nothing of its range: proofs/squares.md.
 
-        Whether they are enough.
+        A point that seems to break it, and whether they are enough.
         """
         name = f"require[{number}]"
         asked = Asked(name, on, enough, SQUARED_GAP, self.until - self.ranges.spent, self.watch)
+        search = Squares(self.writer, asked)
         try:
-            line, why = Squares(self.writer, asked).line()
+            line, why = search.line()
         except KeyboardInterrupt:
             self.ranges.interrupt()
-            return False
+            return {}, False
         self.ranges.limits[f"squares of {name}"] = why
         shown = {} if line is None else self.writer.proof.lines[line].concludes
-        return bool(shown) and all(x >= enough[n] if n == "lower" else x <= enough[n] for n, x in shown.items())
+        return search.breaking, bool(shown) and all(
+            x >= enough[n] if n == "lower" else x <= enough[n] for n, x in shown.items()
+        )
 
     def _over(self, number: int) -> None:
         """A requirement over ranges of its own: a proof of the same kind, whose lines are taken in."""
         derivation = Derivation(statement_varied(self.writer.derivation.statement, number))
         claim = varied(self.claim, number)
         own = best(
-            type(self)(claim, self.gap, self.until, self.watch, self.sharp, None, number, derivation, self.known)
+            type(self)(
+                claim, self.gap, self.until, self.watch, self.sharp, None, number, derivation, self.known, self.terse
+            )
         )
         self.ranges.interrupted |= own.ranges.interrupted
-        self.writer.adopt(own.writer, number, own.results.needed)
+        self.writer.adopt(own.writer, Variant(0, number), own.results.needed)
 
     def _target(self, state: str = "") -> Proved:
         s, claim = state or self.obligations.state, self.claim
@@ -364,6 +390,35 @@ class Attempt:
             kept = self.ranges.enclose(of_kept, on, magnitude=True, floor=floor)
             self._pair("split", slope, kept, moves)
             self._courses("split", slope, domain, on)
+
+    def _sector(self, domain: Domain, on: int, moves: list[Proved] | None) -> None:
+        """Gain and residual of the sector route, where exactly one correction is named: proofs/sector.md."""
+        if moves is None or not applies(self.writer.derivation.statement):
+            return
+        try:
+            obligations = self.obligations.sector(domain)
+        except Bad as why:
+            self.ranges.limits["sector"] = str(why)
+            return
+        *bands, start, kept = obligations
+        # 1 + c m may be small where c m is near -1: its gap, not that of c or m, is what counts
+        (c0, c1), (m0, m1) = ((x.lower, x.upper) for x in (self.ranges.search(b, False, COARSE) for b in bands))
+        products = [c * m for c in (c0, c1) for m in (m0, m1)]
+        size = max(abs(p) for p in products)
+        share = min(1.0, max(abs(1 + p) for p in products) / size) if size > 0 else 1.0
+        gap = max(self.gap * max(share, LEAST_SHARE) / 2, FINEST)
+        found = [self.ranges.enclose(b, on, gap=gap) for b in bands]
+        found.append(self.ranges.enclose(start, None, magnitude=True))
+        rough = self.gap * (1 if self.claim.route == "sector" else ROUGHER)
+        found.append(self.ranges.enclose(kept, on, magnitude=True, gap=rough, floor=rough * self.moved))
+        known = [x for x in found if x is not None]
+        if len(known) == len(found):
+            sensitivity, slope, begun, residual = known
+            k = max(abs(1 + c * m) for c in (sensitivity.lower, sensitivity.upper) for m in (slope.lower, slope.upper))
+            rest = residual.size + sensitivity.size * begun.size + self._moved(moves)
+            uses = [p.line for p in (*known, *moves)]
+            concludes = {"gain": upward(k), "residual": upward(rest)}
+            self.pairs["sector"] = self.writer.theorem("sector", "sector", uses, concludes)
 
     def _courses(self, route: str, slope: Proved | None, domain: Domain, on: int) -> None:
         """Slopes under signals of any course, where constant ones do not tell: proofs/signals.md."""

@@ -7,16 +7,13 @@ from fractions import Fraction
 from itertools import product
 from typing import Any
 
-from ..certificate.certificate import Certificate
 from ..checker.courses import arithmetic
-from ..checker.derive import Derivation
 from ..checker.forms import walk
 from ..checker.ranges import Ends, Evaluator
 from ..checker.reals import Undefined
-from ..checker.rules import Proof
-from ..checker.statement import read_statement
 from ..claim import Claim
 from ..claim.constants import constant
+from .accepted import Accepted
 
 
 @dataclass(frozen=True, slots=True)
@@ -32,22 +29,16 @@ class Cell:
     interpolated: float
 
 
-def residual_by_cell(certificate: Certificate) -> list[Cell]:
+def residual_by_cell(found: Accepted) -> list[Cell]:
     """Proved, as the checker measures it: sup |N − x + F(x*) − N(x*)| over each library cell met.
 
     The set has to be the region: a ball moves with its target and has no cells of its own.
     """
-    entries = certificate.entries
-    claim = entries["claim"]
-    files = {d["name"]: d["text"] for d in claim["data"]}
-    derivation = Derivation(read_statement(claim["text"], claim["set"], files))
+    proof, derivation = found.derived, found.derived.derivation
     name = f"split-residual[{derivation.state}]"
-    proof = Proof(derivation)
-    line = next((x for x in entries["proof"] if (x["rule"], x["proves"]) == ("range", name)), None)
+    line = next((x for x in found.proof if (x["rule"], x["proves"]) == ("range", name)), None)
     if line is None:
         return []
-    for raw in entries["proof"][: max(line["uses"])]:
-        proof.add(raw)
     domain, flows = proof.lines[line["uses"][0]].domain, proof.lines[line["uses"][-1]].flows
     meaning = derivation.meaning(name, domain)
     cut = [k for k, v in enumerate(meaning.variables) if len(v.cells) > 1 and not v.listed]
@@ -56,12 +47,12 @@ def residual_by_cell(certificate: Certificate) -> list[Cell]:
     names, bits = [v.name for v in meaning.variables], line["witness"]["bits"]
     libraries = derivation.statement.libraries
     evaluator = Evaluator(derivation.terms, meaning.root, meaning.by, names, libraries, arithmetic(bits), flows)
-    found: dict[tuple[Ends, ...], Fraction] = {}
+    most: dict[tuple[Ends, ...], Fraction] = {}
     tops = list(product(*(v.cells for v in meaning.variables)))
     for top, tree in zip(tops, line["witness"]["trees"], strict=True):
         low, high = evaluator.a.ends(walk(evaluator, [top], [tree])[0])
         cell = tuple(top[k] for k in cut)
-        found[cell] = max(found.get(cell, Fraction(0)), -low, high)
+        most[cell] = max(most.get(cell, Fraction(0)), -low, high)
     middles = [(v.cells[0][0] + v.cells[-1][1]) / 2 for v in meaning.variables]
 
     def at(places: tuple[Fraction, ...]) -> float:
@@ -78,7 +69,7 @@ def residual_by_cell(certificate: Certificate) -> list[Cell]:
         except Undefined:
             return float("nan")
 
-    return [Cell({names[k]: e for k, e in zip(cut, c, strict=True)}, x, interpolated(c)) for c, x in found.items()]
+    return [Cell({names[k]: e for k, e in zip(cut, c, strict=True)}, x, interpolated(c)) for c, x in most.items()]
 
 
 def finer(found: list[Cell], wanted: float) -> float | None:

@@ -2,16 +2,17 @@
 
 from __future__ import annotations
 
-from collections.abc import Sequence
 from fractions import Fraction
-from itertools import zip_longest
 from typing import Any
 
 from rich.console import Console, Group, RenderableType
 from rich.table import Table
 from rich.text import Text
 
+from ..claim import Claim
 from .cells import Cell, finer
+from .inert import visible
+from .margins import judged
 
 CAUTION = (
     "This certifies the model stated in the claim, not a machine. It is neither a risk assessment nor a statement of "
@@ -21,13 +22,10 @@ MOST = 12  # rows of cells
 STYLES = {"proved": "bold green", "refuted": "bold red", "undecided": "bold yellow"}
 
 
-def outcome(
-    title: str, results: dict[str, Any], units: dict[str, str], asked: Sequence[str | None] = (), horizon: int = 1
-) -> RenderableType:
-    """Quantities with what each gives away, then a row a requirement; `units` are the states'.
-
-    `asked`: the stance that each requirement is about, where it is about one. `horizon`: steps taken together.
-    """
+def outcome(claim: Claim, results: dict[str, Any]) -> RenderableType:
+    """Quantities with what each gives away, then a row a requirement: verdict, what is proved, what is to spare."""
+    units = {n: q.unit for n, q in claim.stances[0].states.items()}
+    title = visible(claim.title or claim.place)
     quantities = Table(title=Text(title), title_justify="left", show_edge=False, pad_edge=False)
     for heading in ("quantity", "proved", "attained", "gives away", "unit"):
         quantities.add_column(heading)
@@ -37,29 +35,37 @@ def outcome(
     for name, value, end, of in rows:
         other = "lower" if end == "upper" else "upper"
         if value is None:
-            quantities.add_row(name, "none", "", "", of)
+            quantities.add_row(name, "none", "", "", Text(visible(of)))
         else:
             sign = "≤ " if end == "upper" else "≥ "
             shown = (_figure(value[end], sign), _figure(value[other], ""), _given_away(value, end))
-            quantities.add_row(name, *shown, of or "-")
+            quantities.add_row(name, *shown, Text(visible(of) or "-"))
     inside, stances = results["set"], results.get("stances", {})
     where = "no set that is mapped into itself" if inside is None else f"certified set: the {inside['kind']}"
     if stances:
         where = "no sets that are mapped into each other" if inside is None else f"{where} of every stance"
     if len(units) > 1 and results["metric"] is not None:
         where += f"; norm: {_norm(results['metric'])}"
-    where += f"; gain and residual are those of {horizon} steps" if horizon > 1 else ""
-    verdicts = Table(show_edge=False, pad_edge=False)
-    for heading in ("requirement", "verdict", "value"):
-        verdicts.add_column(heading, overflow="fold")
-    for r, stance in zip_longest(results["requirements"], asked):
-        row = Text(f"in [{_figure(r['value']['lower'], '')}, {_figure(r['value']['upper'], '')}]" if r["value"] else "")
-        if r["limited_by"]:
-            row.append(f"\n{r['limited_by']}")
-        that = r["that"] + (f" in {stance}" if stance else "")
-        verdicts.add_row(Text(that), Text(r["verdict"], STYLES[r["verdict"]]), row)
+    where += f"; gain and residual are those of {claim.horizon} steps" if claim.horizon > 1 else ""
     more = [*_routes(results, unit), *(_stances(stances, units, results["metric"] is None) if stances else [])]
-    return Group(quantities, Text(where), *more, Text(""), verdicts, Text(""), Text(CAUTION))
+    return Group(quantities, Text(where), *more, Text(""), _verdicts(claim, results), Text(""), Text(CAUTION))
+
+
+def _verdicts(claim: Claim, results: dict[str, Any]) -> Table:
+    """To spare is what lies between what is proved and the requirement's constant (of settles: the set's radius)."""
+    table = Table(show_edge=False, pad_edge=False)
+    for heading in ("requirement", "verdict", "proved", "to spare"):
+        table.add_column(heading, overflow="fold")
+    for r in judged(claim, results):
+        row = Text(visible(r.proved))
+        if r.attained and r.verdict != "proved":
+            row.append(f"; attained {visible(r.attained)}")
+        if r.remark:
+            row.append(f"\n{visible(r.remark)}")
+        spare = visible(r.margin) + (f" ({r.share})" if r.share else "")
+        that = visible(r.that) + (f" in {r.stance}" if r.stance else "")
+        table.add_row(Text(that), Text(r.verdict, STYLES[r.verdict]), row, Text(spare))
+    return table
 
 
 Row = tuple[str, Any, str, str]
@@ -111,8 +117,8 @@ def _routes(results: dict[str, Any], unit: str) -> list[RenderableType]:
     if len(results["routes"]) < 2:
         return []
     table = Table(show_edge=False, pad_edge=False)
-    for heading in ("route", "gain", f"residual {unit}", f"bound {unit}", ""):
-        table.add_column(heading.strip())
+    for heading in ("route", "gain", f"residual {visible(unit)}", f"bound {visible(unit)}", ""):
+        table.add_column(Text(heading.strip()))
     for name, route in results["routes"].items():
         shown = [_figure(route[q]["upper"], "≤ ") if route[q] else "none" for q in ("gain", "residual", "bound")]
         table.add_row(name, *shown, "reported" if name == results["route"] else "")
@@ -132,7 +138,7 @@ def _stances(stances: dict[str, Any], units: dict[str, str], apart: bool) -> lis
                 f"{sign}{float(figures[x][end]):.7g}" if figures[x] and figures[x][end] else "none"
                 for x, sign, end in (("bound", "≤ ", "upper"), ("radius", "≥ ", "lower"), ("push", "≥ ", "lower"))
             ]
-            table.add_row(name, s, " to ".join(dict.fromkeys(ends)) or "?", *shown, units[s] or "-")
+            table.add_row(name, s, " to ".join(dict.fromkeys(ends)) or "?", *shown, Text(visible(units[s]) or "-"))
     norms = [Text(f"norm in {name}: {_norm(one['metric'])}") for name, one in stances.items() if apart]
     return [Text(""), table, *norms]
 
@@ -146,8 +152,8 @@ def cells(found: list[Cell], unit: str, wanted: float | None = None) -> Renderab
     table.show_edge, table.pad_edge = False, False
     for name in found[0].ends:
         table.add_column(name)
-    for heading in (f"residual {unit}".strip(), "by interpolation*", ""):
-        table.add_column(heading)
+    for heading in (f"residual {visible(unit)}".strip(), "by interpolation*", ""):
+        table.add_column(Text(heading))
     most = max(float(c.residual) for c in found)
     for cell in sorted(found, key=lambda c: -c.residual)[:MOST]:
         share = float(cell.residual) / most if most else 0.0
@@ -155,10 +161,10 @@ def cells(found: list[Cell], unit: str, wanted: float | None = None) -> Renderab
         table.add_row(*ranges, f"≤ {float(cell.residual):.5g}", f"{cell.interpolated:.2g}", "#" * round(10 * share))
     if len(found) > MOST:
         table.add_row(f"and {len(found) - MOST} more", *[""] * (len(found[0].ends) + 2))
-    return Group(Text(""), table, Text(f"* an estimate, not proved{_spacing(found, wanted)}"))
+    return Group(Text(""), table, Text(f"* an estimate, not proved{spacing_wanted(found, wanted)}"))
 
 
-def _spacing(found: list[Cell], wanted: float | None) -> str:
+def spacing_wanted(found: list[Cell], wanted: float | None) -> str:
     """What spacing of the library would do for a wanted residual, to end a sentence with."""
     if wanted is None:
         return ""
