@@ -152,11 +152,8 @@ def test_everyone_finds_their_part(document: Document, pendulum: Accepted) -> No
         assert f"{number}. {line['proves']}:" in text
 
 
-def test_every_rule_is_said_in_words_and_has_its_page() -> None:
-    assert set(SHAPES) == set(PAGES)
-    proofs = Path(__file__).parents[2] / "proofs"
-    missing = {page for page, how in PAGES.values() if not ((proofs / page).is_file() and how)}
-    assert not missing
+def test_every_rule_is_said_in_words() -> None:
+    assert set(SHAPES) == set(PAGES)  # that the pages are there, tests/test_proofs.py holds
 
 
 def test_the_standards_are_those_named() -> None:
@@ -709,7 +706,7 @@ def test_explain_says_what_cannot_be_proved_yet(tmp_path: Path) -> None:
     claim.write_text(text)
     (tmp_path / "strides.csv").write_bytes((EXAMPLES / "strides.csv").read_bytes())
     status, out, _ = run_here("explain", claim)
-    assert status == 0 and "cannot be proved yet" in out and "falls to 0" in out
+    assert status == 0 and "cannot be proved yet" in " ".join(out.split()) and "falls to 0" in out
 
 
 # --- other programs --------------------------------------------------------------------------------------------------------
