@@ -234,7 +234,7 @@ def test_without_matplotlib_a_report_says_how_to_get_figures(
 ) -> None:
     monkeypatch.setattr(figures, "available", lambda: False)
     page = Page(html(report(pendulum)))
-    assert "pip install 'ultibound[report]'" in page.text and "figure" not in {t for t, _ in page.met}
+    assert "pip install matplotlib" in page.text and "figure" not in {t for t, _ in page.met}
     assert "worst error" in page.text
 
 

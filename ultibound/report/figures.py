@@ -34,7 +34,7 @@ STYLE = {
 }  # fmt: skip
 SIZE = (4.6, 3.3)  # inches: at the width of a telephone the letters stay legible
 LONGEST = 24  # letters of a unit on an axis
-HOW = "Figures need matplotlib: pip install 'ultibound[report]'"
+HOW = "Figures need matplotlib, which is not installed here: pip install matplotlib"
 
 
 def available() -> bool:

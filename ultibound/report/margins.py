@@ -98,6 +98,7 @@ def _one(claim: Claim, results: dict[str, Any], number: int, r: Requirement, ent
         spare = with_unit(rounded(margin[0], False, 3), unit)
         if margin[1]:
             share = f"{rounded(100 * margin[0] / abs(margin[1]), False, 2)} %"
+    shown = shown.replace("≤ 1 steps", "≤ 1 step")
     return Judged(
         number, r.text, r.stance or "", entry["verdict"], shown, other, spare, share, entry["limited_by"] or ""
     )
