@@ -14,6 +14,7 @@ import pytest
 
 from tests.checker import (
     test_absorbed_boundaries,
+    test_attracting_boundaries,
     test_boundaries,
     test_graph_boundaries,
     test_horizon_boundaries,
@@ -48,11 +49,11 @@ PROOFS = (
 )
 STANCES = ("calculus", "motion", "signals", "models", "rates", "flows")
 NORMS = ("matrices",)
-SEVERAL = ("jacobians", "several", "outcomes", "periodic", "products", "absorbed")
+SEVERAL = ("jacobians", "several", "outcomes", "periodic", "products", "absorbed", "attracting")
 GRAPHS = ("graph", "graph_outcomes")
 SQUARES = ("squares", "polynomials")
 READING = ("grammar", "numerals", "statement", "tables", "scope", "command")
-SAMPLE, SEED = 20, 20260101
+SAMPLE, SEED = 10, 20260101
 MOST_EQUIVALENT = 0.05
 
 
@@ -73,7 +74,12 @@ def batteries(copies: Copies) -> dict[str, Battery]:
     reading, stances = Battery(test_reading.CASES, 400), Battery(test_stance_boundaries.CASES | squares_cases)
     norms = Battery(test_matrices.CASES)
     horizon_cases = {f"horizon: {n}": q for n, q in test_horizon_boundaries.CASES.items()}
-    orbits = test_periodic_boundaries.CASES | test_product_boundaries.CASES | test_absorbed_boundaries.CASES
+    orbits = (
+        test_periodic_boundaries.CASES
+        | test_product_boundaries.CASES
+        | test_absorbed_boundaries.CASES
+        | test_attracting_boundaries.CASES
+    )
     several = Battery(test_several_boundaries.CASES | orbits | horizon_cases | squares_cases)
     stance_cases = {f"stance: {n}": q for n, q in test_stance_boundaries.CASES.items()}
     graphs = Battery(test_graph_boundaries.CASES)

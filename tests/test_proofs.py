@@ -58,7 +58,8 @@ def test_sources_hold_no_assumption() -> None:
 
 @pytest.mark.parametrize(
     "spoiling", ["Admitted.", "Axiom a : False.", "Parameter n : nat.", "Proof. admit. Qed.", "Hypothesis h : False.",
-                 "Unset Guard Checking.", "Notation \"x <= y\" := True."]
+                 "Unset Guard Checking.", "Notation \"x <= y\" := True.",
+                 "Variable h : 0 <= k.", "Variables (f : R -> R) (h : f 0 = 1)."]
 )  # fmt: skip
 def test_a_spoiled_source_is_refused(spoiling: str) -> None:
     for text in TEXTS.values():

@@ -18,7 +18,9 @@ NAME = re.compile(r"`([^`]+)`")
 STATEMENT = re.compile(r"^(Theorem|Example)\s+(\w+)", re.M)
 REFUSED = re.compile(  # what would let a statement through unproved, or hide an assumption in it
     r"\b(Admitted|admit|give_up|Axioms?|Parameters?|Conjectures?|Hypothes[ie]s|Declare|Load|Redirect|bypass_check"
-    r"|(?:Unset|Set)\s+(?:Guard|Positivity|Universe)\s+Checking|Primitive|Extract\w*|Notation|Infix|Abort)\b"
+    r"|(?:Unset|Set)\s+(?:Guard|Positivity|Universe)\s+Checking|Primitive|Extract\w*|Notation|Infix|Abort|Context)\b"
+    r"|^\s*Variables?\b(?:->|[^.<>=])*(?:[<=]|(?<!-)>)",  # in a section, a hypothesis by another name
+    re.M,
 )
 
 

@@ -42,28 +42,11 @@ Proof.
     0 <= dot n d (subtract y x)).
   { intros d Hd. apply sum_nonneg. intros i Hi. specialize (B i Hi). unfold subtract.
     destruct (Hd i Hi) as [[S E]|[[S E]|E]]; rewrite E; nra. }
-  destruct G as [C [cuts D]].
-  assert (G2 : 0 <= f y - f x).
-  { assert (Q : forall a b, 0 <= a -> a <= b -> b <= 1 -> forall l, (forall t, a < t < b -> ~ In t l -> exists d, 0 <= d /\ is_derive (fun t => f (on y x t)) t d) ->
-      f (on y x a) <= f (on y x b)).
-    { intros a b Ha L Hb l. revert a b Ha L Hb. induction l as [|p l IH]; intros a b Ha L Hb S.
-      - destruct L as [L|<-]; [|lra].
-        destruct (mean_smooth (fun t => f (on y x t)) a b (fun d => 0 <= d) L) as [d [P E]].
-        + apply (continuous_sub (between 0 1)); [unfold between; intros; lra|exact C].
-        + intros t Ht N. destruct (S t Ht N) as [d [P E]]. now exists d.
-        + nra.
-      - assert (S' : forall a' b', a <= a' -> b' <= b -> (p <= a' \/ b' <= p) -> forall t, a' < t < b' -> ~ In t l ->
-          exists d, 0 <= d /\ is_derive (fun t => f (on y x t)) t d).
-        { intros a' b' A' B' Hp t Ht N. apply S; [lra|]. intros [<-|I]; [lra|now apply N]. }
-        destruct (Rle_dec p a) as [Hp|Hp]; [apply IH; trivial; apply S'; lra|].
-        destruct (Rle_dec b p) as [Hq|Hq]; [apply IH; trivial; apply S'; lra|].
-        apply Rle_trans with (f (on y x p)); apply IH; try lra; apply S'; lra. }
-    specialize (Q 0 1 (Rle_refl 0) Rle_0_1 (Rle_refl 1) cuts).
-    assert (E1 : on y x 1 = y) by (apply functional_extensionality; intro; unfold on; ring).
-    assert (E0 : on y x 0 = x) by (apply functional_extensionality; intro; unfold on; ring).
-    rewrite E1, E0 in Q. apply Rge_le, Rge_minus, Rle_ge, Q. intros t Ht N. destruct (D t Ht N) as [d [Gd E]].
-    exists (dot n d (subtract y x)). split; [now apply H|exact E]. }
-  lra.
+  destruct G as [C [cuts D]]. assert (M := mean_below (fun t => f (on y x t)) 0 1 cuts 0 Rle_0_1 C).
+  assert (E1 : on y x 1 = y) by (apply functional_extensionality; intro; unfold on; ring).
+  assert (E0 : on y x 0 = x) by (apply functional_extensionality; intro; unfold on; ring).
+  cbv beta in M. rewrite E1, E0 in M. enough (0 * (1 - 0) <= f y - f x) by lra. apply M.
+  intros t Ht N. destruct (D t Ht N) as [d [Gd E]]. exists (dot n d (subtract y x)). split; [exact E|now apply H].
 Qed.
 
 (* Forms (3) asks for a settled sign: x² on [−1, 1] is larger at −1 than at 0, and its slope is of both signs. *)
@@ -99,6 +82,36 @@ Proof.
     - apply (C _ (fun t => u1 t - u1 0 - hi * t)); [apply Dk|unfold between; intros; lra].
     - intros t Ht _. exists (u1 t - u1 0 - hi * t). split; [apply Dk; lra|]. specialize (S1 t ltac:(lra)). lra. }
   lra.
+Qed.
+
+(* Forms (4): with |x_i − c_i| <= r_i, f(x) − f(c) − Σ f_i(c)(x_i − c_i) lies in Σ h_ii [0, r_i²/2] + Σ_{i<j} h_ij [−r_i r_j, r_i r_j]. *)
+Theorem second_order_box (n : nat) (u u1 : R -> R) (h : R -> matrix) (e r : vector) (low high : matrix) :
+  (forall t, 0 <= t <= 1 -> is_derive u t (u1 t)) ->
+  (forall t, 0 <= t <= 1 -> is_derive u1 t (sum n (fun i => sum n (fun j => h t i j * e i * e j)))) ->
+  (forall t i j, 0 <= t <= 1 -> h t i j = h t j i) -> (forall i, (i < n)%nat -> Rabs (e i) <= r i) ->
+  (forall t i z, 0 <= t <= 1 -> (i < n)%nat -> 0 <= z <= r i * r i / 2 -> low i i <= h t i i * z <= high i i) ->
+  (forall t i j z, 0 <= t <= 1 -> (j < i)%nat -> (i < n)%nat -> Rabs z <= r j * r i -> low i j <= h t i j * z <= high i j) ->
+  sum n (fun i => sum (S i) (fun j => low i j)) <= u 1 - u 0 - u1 0 <= sum n (fun i => sum (S i) (fun j => high i j)).
+Proof.
+  intros D1 D2 Sym Re Diag Off.
+  assert (Half : forall t, 0 <= t <= 1 -> sum n (fun i => sum n (fun j => h t i j * e i * e j))
+    = 2 * sum n (fun i => h t i i * (e i * e i / 2) + sum i (fun j => h t i j * (e j * e i)))).
+  { intros t Ht. clear -Sym Ht. induction n as [|q IH]; [cbn; ring|].
+    cbn [sum]. rewrite sum_plus, IH.
+    rewrite (sum_ext q (fun i => h t i q * e i * e q) (fun j => h t q j * (e j * e q))) by (intros i _; rewrite (Sym t i q Ht); ring).
+    rewrite (sum_ext q (fun j => h t q j * e q * e j) (fun j => h t q j * (e j * e q))) by (intros; ring). field. }
+  assert (B : forall t, 0 <= t <= 1 -> sum n (fun i => sum (S i) (fun j => low i j))
+    <= sum n (fun i => h t i i * (e i * e i / 2) + sum i (fun j => h t i j * (e j * e i))) <= sum n (fun i => sum (S i) (fun j => high i j))).
+  { intros t Ht.
+    assert (Sq : forall i, (i < n)%nat -> 0 <= e i * e i / 2 <= r i * r i / 2).
+    { intros i Hi. specialize (Re i Hi). assert (P := Rabs_pos (e i)). assert (Q : e i * e i = Rabs (e i) * Rabs (e i)).
+      { rewrite <- Rabs_mult, Rabs_pos_eq; [reflexivity|nra]. } rewrite Q. nra. }
+    assert (Pr : forall i j, (j < i)%nat -> (i < n)%nat -> Rabs (e j * e i) <= r j * r i).
+    { intros i j Hj Hi. rewrite Rabs_mult. apply Rmult_le_compat; try apply Rabs_pos; apply Re; lia. }
+    split; apply sum_le; intros i Hi; cbn [sum]; rewrite Rplus_comm; apply Rplus_le_compat;
+      try (apply (Diag t i (e i * e i / 2) Ht Hi), Sq, Hi); apply sum_le; intros j Hj; apply (Off t i j (e j * e i) Ht Hj Hi), Pr; trivial. }
+  assert (T := second_order u u1 _ (2 * sum n (fun i => sum (S i) (fun j => low i j))) (2 * sum n (fun i => sum (S i) (fun j => high i j))) D1 D2).
+  assert (T' := T ltac:(intros t Ht; cbv beta; rewrite (Half t Ht); specialize (B t Ht); lra)). lra.
 Qed.
 
 (** Splitting trees: a bisection of variable i at the middle, or a leaf. *)
@@ -207,4 +220,13 @@ Proof.
   eapply Rle_trans; [apply Rabs_triang|]. apply Rplus_le_compat; trivial. eapply Rle_trans; [apply sum_abs|].
   apply sum_le. intros l Hl. rewrite Rabs_mult. specialize (C l Hl).
   assert (Rabs (t l) <= 1) by (apply Rabs_le_between; lra). assert (P := Rabs_pos (g l)). nra.
+Qed.
+
+(* Reading (2): by variable i a function of degree at most one has everywhere the slope (f at hi − f at lo)/(hi − lo). *)
+Theorem slope_of_reading (n : nat) (f : vector -> R) (i : nat) (x : vector) (lo hi : R) : multilinear n f -> (i < n)%nat -> lo < hi ->
+  is_derive (fun z => f (put x i z)) (x i) ((f (put x i hi) - f (put x i lo)) / (hi - lo)).
+Proof.
+  intros M Hi L. destruct (M x i Hi) as [a [b E]]. rewrite !E.
+  apply (is_derive_ext (fun z => a + z * b)); [intro; now rewrite E|].
+  replace ((a + hi * b - (a + lo * b)) / (hi - lo)) with b by (field; lra). auto_derive; [exact I|ring].
 Qed.

@@ -67,14 +67,13 @@ Proof.
   rewrite Q, derive_pt_id in E. unfold id, g in E. rewrite !clip_same in E by (unfold between; lra). lra.
 Qed.
 
-(* A function that is continuous, and smooth but for finitely many points, moves no more than its slopes allow. *)
-Lemma mean_value (f : R -> R) a b cuts lo hi : a <= b -> continuous_over (between a b) f ->
-  smooth_on a b cuts f (fun d => lo <= d <= hi) -> lo * (b - a) <= f b - f a <= hi * (b - a).
+(* A function that is continuous, and smooth but for finitely many points, rises at least as its least slope says. *)
+Lemma mean_below (f : R -> R) a b cuts lo : a <= b -> continuous_over (between a b) f ->
+  smooth_on a b cuts f (fun d => lo <= d) -> lo * (b - a) <= f b - f a.
 Proof.
   revert a b; induction cuts as [|p cuts IH]; intros a b L C D.
-  - destruct L as [L|<-]; [|lra]. destruct (mean_smooth f a b _ L C D) as [d [H ->]].
-    split; apply Rmult_le_compat_r; lra.
-  - assert (D' : forall a' b', a <= a' -> b' <= b -> (p <= a' \/ b' <= p) -> smooth_on a' b' cuts f (fun d => lo <= d <= hi)).
+  - destruct L as [L|<-]; [|lra]. destruct (mean_smooth f a b _ L C D) as [d [H ->]]. apply Rmult_le_compat_r; lra.
+  - assert (D' : forall a' b', a <= a' -> b' <= b -> (p <= a' \/ b' <= p) -> smooth_on a' b' cuts f (fun d => lo <= d)).
     { intros a' b' Ha Hb Hp x Hx N. apply D; [lra|]. intros [<-|I]; [lra|now apply N]. }
     destruct (Rle_dec p a) as [Hp|Hp]; [apply IH; trivial; apply D'; lra|].
     destruct (Rle_dec b p) as [Hq|Hq]; [apply IH; trivial; apply D'; lra|].
@@ -82,6 +81,23 @@ Proof.
       ltac:(apply D'; lra)).
     assert (B := IH p b ltac:(lra) ltac:(apply (continuous_sub (between a b)); unfold between; trivial; intros; lra)
       ltac:(apply D'; lra)). lra.
+Qed.
+
+Lemma continuous_opposite (s : R -> Prop) (f : R -> R) : continuous_over s f -> continuous_over s (fun t => - f t).
+Proof.
+  intros C x Hx eps He. destruct (C x Hx eps He) as [d [Hd D]]. exists d. split; trivial. intros y Hy Hyx.
+  specialize (D y Hy Hyx). replace (- f y - - f x) with (- (f y - f x)) by ring. now rewrite Rabs_Ropp.
+Qed.
+
+(* A function that is continuous, and smooth but for finitely many points, moves no more than its slopes allow. *)
+Lemma mean_value (f : R -> R) a b cuts lo hi : a <= b -> continuous_over (between a b) f ->
+  smooth_on a b cuts f (fun d => lo <= d <= hi) -> lo * (b - a) <= f b - f a <= hi * (b - a).
+Proof.
+  intros L C D. split.
+  - apply (mean_below f a b cuts); trivial. intros x Hx N. destruct (D x Hx N) as [d [Hd B]]. exists d. split; [exact Hd|lra].
+  - assert (- hi * (b - a) <= - f b - - f a); [|lra].
+    apply (mean_below (fun t => - f t) a b cuts); [exact L|now apply continuous_opposite|].
+    intros x Hx N. destruct (D x Hx N) as [d [Hd B]]. exists (- d). split; [now apply (is_derive_opp (V := R_NormedModule) f)|lra].
 Qed.
 
 Lemma mean_size (f : R -> R) a b cuts k : continuous_over (between (Rmin a b) (Rmax a b)) f ->

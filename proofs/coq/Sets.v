@@ -221,3 +221,7 @@ Proof.
     rewrite !Rminus_0_r. split; [rewrite Rabs_R0; lra|].
     rewrite Rabs_pos_eq; lra.
 Qed.
+
+(* Curve (4): of several bounds that hold in the end, the least does. *)
+Theorem least_of_bounds (m : model) (s : set m) (b b' : R) : ultimate m s b -> ultimate m s b' -> ultimate m s (Rmin b b').
+Proof. intros U U' c. unfold Rmin. destruct (Rle_dec b b'); [apply U|apply U']. Qed.

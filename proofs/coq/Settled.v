@@ -213,6 +213,20 @@ Example no_fixed_point_at_gain_one (delta : R) : 0 < delta -> (forall x y, Rabs 
   forall x, x + delta <> x.
 Proof. intro P. split; [intros x y; right; rewrite Rmult_1_l; f_equal; ring|]. intros x E. lra. Qed.
 
+(** A round of maps g_0, …, g_{p−1}. *)
+Fixpoint round (g : nat -> vector -> vector) (p : nat) (x : vector) : vector := match p with O => x | S p => g p (round g p x) end.
+
+(* Several (6), horizon (5): a round of p maps that each contract by k >= 0 within a set they keep contracts by kᵖ, and stays in it. *)
+Theorem round_contracts (nm : vector -> R) (g : nat -> vector -> vector) (c : vector -> Prop) (k : R) (p : nat) : 0 <= k ->
+  (forall j y, c y -> c (g j y)) -> (forall j y z, c y -> c z -> nm (subtract (g j y) (g j z)) <= k * nm (subtract y z)) ->
+  forall y z, c y -> c z -> c (round g p y) /\ nm (subtract (round g p y) (round g p z)) <= k ^ p * nm (subtract y z).
+Proof.
+  intros Hk K Con y z Cy Cz.
+  assert (In : forall q x, c x -> c (round g q x)) by (induction q; cbn; auto).
+  split; [now apply In|]. induction p as [|p IH]; cbn [round pow]; [lra|].
+  eapply Rle_trans; [apply Con; now apply In|]. rewrite Rmult_assoc. now apply Rmult_le_compat_l.
+Qed.
+
 (* Several (6): states of an orbit no farther than ρ from those followed have errors of at least |e_s(x_j)| − σ_s ρ. *)
 Theorem error_along_orbit (nm : vector -> R) (s : nat) (sigma rho : R) (x y target : vector) :
   0 <= sigma -> (forall e, Rabs (e s) <= sigma * nm e) -> nm (subtract y x) <= rho ->

@@ -79,6 +79,22 @@ Proof.
   apply Rmult_le_compat; auto using Rabs_pos.
 Qed.
 
+(* Attained (3): where every ∂x*/∂h_i keeps a sign and is at least c_i in magnitude, moving all h_i by delta_i to that side moves the target by at least Σ c_i delta_i. *)
+Theorem target_surely_moved (n : nat) (target : vector -> R) (c delta sign h h' : vector) :
+  let on t := target (fun i => h i + t * (h' i - h i)) in
+  continuous_over (between 0 1) on ->
+  (exists cuts, forall t, 0 < t < 1 -> ~ In t cuts -> exists g : vector,
+     (forall i, (i < n)%nat -> c i <= sign i * g i) /\ is_derive on t (sum n (fun i => g i * (h' i - h i)))) ->
+  (forall i, (i < n)%nat -> h' i - h i = sign i * delta i /\ 0 <= delta i) ->
+  sum n (fun i => c i * delta i) <= Rabs (on 1 - on 0).
+Proof.
+  intros on C [cuts D] M. apply Rle_trans with (on 1 - on 0); [|apply Rle_abs].
+  replace (sum n (fun i => c i * delta i)) with (sum n (fun i => c i * delta i) * (1 - 0)) by ring.
+  apply (mean_below on 0 1 cuts); [lra|exact C|]. intros t Ht N. destruct (D t Ht N) as [g [G E]]. eexists; split; [exact E|].
+  apply sum_le. intros i Hi. destruct (M i Hi) as [-> P]. specialize (G i Hi).
+  replace (g i * (sign i * delta i)) with (sign i * g i * delta i) by ring. now apply Rmult_le_compat_r.
+Qed.
+
 (* Slopes at single points say nothing across a jump: the step from 0 to 1 has slope 0 wherever it has one. *)
 Example slopes_across_a_jump :
   let f x := if Rle_dec x 0 then 0 else 1 in

@@ -28,12 +28,6 @@ Proof.
   eapply Rle_trans; [apply A; trivial; lia|apply Rmax_l].
 Qed.
 
-Lemma continuous_opp (s : R -> Prop) (f : R -> R) : continuous_over s f -> continuous_over s (fun t => - f t).
-Proof.
-  intros C x Hx eps He. destruct (C x Hx eps He) as [d [Hd D]]. exists d. split; trivial. intros y Hy Hyx.
-  specialize (D y Hy Hyx). replace (- f y - - f x) with (- (f y - f x)) by ring. now rewrite Rabs_Ropp.
-Qed.
-
 Lemma continuous_plus (s : R -> Prop) (f g : R -> R) : continuous_over s f -> continuous_over s g -> continuous_over s (fun t => f t + g t).
 Proof.
   intros C D x Hx eps He. destruct (C x Hx (eps / 2) ltac:(lra)) as [d [Hd A]]. destruct (D x Hx (eps / 2) ltac:(lra)) as [e [Hp B]].
@@ -76,7 +70,7 @@ Proof.
   { intros sign Sg. apply falling; [apply Ht| |].
     - unfold g. apply (continuous_sub (between a b)); [unfold between in *; intros; lra|].
       apply (continuous_plus _ (fun s => sign * u i s - z i s) (fun s => - (c / 2 * exp (l * (s - a))))).
-      + apply (continuous_plus _ (fun s => sign * u i s) (fun s => - z i s)); [now apply continuous_scale|now apply continuous_opp].
+      + apply (continuous_plus _ (fun s => sign * u i s) (fun s => - z i s)); [now apply continuous_scale|now apply continuous_opposite].
       + apply derivable_continuous. intros s _. eexists. auto_derive; [exact I|reflexivity].
     - intros s Hs. destruct Ht as [Ht1 Ht2]. destruct (Du s ltac:(lra)) as [m [v [D1 [M V]]]]. destruct (Dz s ltac:(lra)) as [d [D2 P]].
       exists (sign * (sum n (fun j => m j * u j s) + v) - d - c / 2 * (l * exp (l * (s - a)))). split.
@@ -113,7 +107,7 @@ Proof.
   { intros i Hi. apply (continuous_plus _ (fun t => Rabs (u i t)) (fun t => - z i t)).
     - intros x Hx eps He. destruct (proj1 (Su i Hi) x Hx eps He) as [d [Hd D]]. exists d. split; trivial. intros y Hy Hyx.
       eapply Rle_lt_trans; [apply Rabs_triang_inv2|now apply D].
-    - apply continuous_opp, (Az i Hi). }
+    - apply continuous_opposite, (Az i Hi). }
   assert (Half : forall k i t, (i < n)%nat -> between a b t -> Rabs (u i t) - z i t <= c * (1 / 2) ^ k * exp (l * (t - a))).
   { induction k as [|k IH]; intros i t Hi Ht.
     - rewrite pow_O, Rmult_1_r. eapply Rle_trans; [now apply Bd|].
@@ -279,6 +273,119 @@ Theorem rate_of_solution (n : nat) (m v u top : vector) (B : matrix) (w : vector
 Proof.
   intros M V U. eapply Rle_trans; [apply Rabs_triang|]. apply Rplus_le_compat; trivial.
   apply (times_near n (fun _ => m) B u top i); trivial.
+Qed.
+
+(* (1) With Y' = h(A Y + β) + d stated and y' = h(A y + β) true, e = y − Y has e' = h A e − d: the setting of (2), where |h A| <= B and |d| <= w. *)
+Theorem defect (n : nat) (a b h : R) (A : R -> matrix) (beta : R -> vector) (B : matrix) (w : vector) (y Y d : nat -> R -> R) :
+  (forall i, (i < n)%nat -> continuous_over (between a b) (y i) /\ continuous_over (between a b) (Y i)) ->
+  (forall i t, (i < n)%nat -> a < t < b -> is_derive (y i) t (h * (sum n (fun j => A t i j * y j t) + beta t i)) /\
+    is_derive (Y i) t (h * (sum n (fun j => A t i j * Y j t) + beta t i) + d i t)) ->
+  (forall i j t, (i < n)%nat -> (j < n)%nat -> a < t < b -> Rabs (h * A t i j) <= B i j) ->
+  (forall i t, (i < n)%nat -> a < t < b -> Rabs (d i t) <= w i) -> solves n a b B w (fun i t => y i t - Y i t).
+Proof.
+  intros C D HB Hd i Hi. split.
+  - apply (continuous_plus _ (y i) (fun t => - Y i t)); [apply (C i Hi)|apply continuous_opposite, (C i Hi)].
+  - intros t Ht. destruct (D i t Hi Ht) as [Dy DY]. exists (fun j => h * A t i j), (- d i t). split; [|split].
+    + replace (sum n (fun j => h * A t i j * (y j t - Y j t)) + - d i t) with
+        (h * (sum n (fun j => A t i j * y j t) + beta t i) - (h * (sum n (fun j => A t i j * Y j t) + beta t i) + d i t)).
+      * apply (is_derive_minus (V := R_NormedModule) (y i) (Y i)); assumption.
+      * rewrite (sum_ext n (fun j => h * A t i j * (y j t - Y j t)) (fun j => h * (A t i j * y j t) - h * (A t i j * Y j t))) by (intros; ring).
+        rewrite sum_minus, !sum_scale. ring.
+    + intros j Hj. now apply HB.
+    + rewrite Rabs_Ropp. now apply Hd.
+Qed.
+
+(* (5) A later piece starts off by at most |Y(−1) − Y⁻(1)|, Y⁻ of the piece before, plus the bound for that piece. *)
+Theorem piece_start (y Y before err : R) : Rabs (y - before) <= err -> Rabs (y - Y) <= Rabs (Y - before) + err.
+Proof. unfold Rabs. repeat destruct (Rcase_abs _); lra. Qed.
+
+(* (4) For a function smooth around [c − ρ, c + ρ] with |f^(K)|/K! <= b there, the Taylor polynomial of K terms is off by at most b ρ^K. *)
+Theorem taylor_remainder (f : R -> R) (K : nat) (c rho wider b v : R) : 0 <= rho < wider ->
+  (forall t, c - wider < t < c + wider -> forall k, (k <= S K)%nat -> ex_derive_n f k t) ->
+  (forall t, c - rho <= t <= c + rho -> Rabs (Derive_n f (S K) t) / INR (fact (S K)) <= b) -> Rabs v <= rho ->
+  Rabs (f (c + v) - sum_f_R0 (fun k => v ^ k / INR (fact k) * Derive_n f k c) K) <= b * rho ^ S K.
+Proof.
+  intros Hr D B V. apply Rabs_ends in V. assert (Fp : forall k, 0 < INR (fact k)) by (intro; apply INR_fact_lt_0).
+  assert (B0 : 0 <= b).
+  { eapply Rle_trans; [|apply (B c); lra]. apply Rmult_le_pos; [apply Rabs_pos|left; apply Rinv_0_lt_compat, Fp]. }
+  assert (Last : forall z u, c - rho <= z <= c + rho -> 0 <= u <= rho -> Rabs (u ^ S K / INR (fact (S K)) * Derive_n f (S K) z) <= b * rho ^ S K).
+  { intros z u Hz Hu. unfold Rdiv. rewrite !Rabs_mult, (Rabs_pos_eq (u ^ S K)) by (apply pow_le; lra).
+    rewrite (Rabs_pos_eq (/ _)) by (left; apply Rinv_0_lt_compat, Fp). specialize (B z Hz). unfold Rdiv in B.
+    assert (P : u ^ S K <= rho ^ S K) by (apply pow_incr; lra). assert (P0 : 0 <= u ^ S K) by (apply pow_le; lra).
+    rewrite Rmult_assoc, (Rmult_comm (/ _)), (Rmult_comm b). apply Rmult_le_compat; trivial.
+    apply Rmult_le_pos; [apply Rabs_pos|left; apply Rinv_0_lt_compat, Fp]. }
+  destruct (Rtotal_order v 0) as [Neg|[->|Pos]].
+  - (* f(−t) from −c up *)
+    assert (Loc : forall t k, c - wider < t < c + wider -> (k <= S K)%nat -> locally t (fun y => forall j, (j <= k)%nat -> ex_derive_n f j y)).
+    { intros t k Ht Hk. assert (Hm : 0 < Rmin (t - (c - wider)) (c + wider - t)) by (apply Rmin_glb_lt; lra).
+      exists (mkposreal _ Hm). intros y Hy j Hj. apply D; [|lia].
+      assert (H3 := Rmin_l (t - (c - wider)) (c + wider - t)). assert (H4 := Rmin_r (t - (c - wider)) (c + wider - t)).
+      unfold ball in Hy; cbn in Hy; unfold AbsRing_ball, abs, minus, plus, opp in Hy; cbn in Hy. apply Rabs_def2 in Hy. lra. }
+    destruct (Taylor_Lagrange (fun t => f (- t)) K (- c) (- c - v) ltac:(lra)) as [z [Hz E]].
+    { intros t Ht k Hk. apply ex_derive_n_comp_opp. apply Loc; [lra|exact Hk]. }
+    cbv beta in E. replace (- (- c - v)) with (c + v) in E by ring. replace (- c - v - - c) with (- v) in E by ring. rewrite E.
+    rewrite (Derive_n_comp_opp f (S K) z) by (apply Loc; [lra|lia]).
+    rewrite (sum_eq _ (fun k => v ^ k / INR (fact k) * Derive_n f k c)).
+    2:{ intros k Hk. rewrite (Derive_n_comp_opp f k (- c)) by (apply Loc; [rewrite Ropp_involutive; lra|lia]).
+        rewrite Ropp_involutive. replace ((- v) ^ k) with ((-1) ^ k * v ^ k) by (rewrite <- Rpow_mult_distr; f_equal; ring).
+        assert (Sq : (-1) ^ k * (-1) ^ k = 1) by (rewrite <- Rpow_mult_distr; replace (-1 * -1) with 1 by ring; apply pow1).
+        unfold Rdiv. replace ((-1) ^ k * v ^ k * / INR (fact k) * ((-1) ^ k * Derive_n f k c)) with ((-1) ^ k * (-1) ^ k * (v ^ k * / INR (fact k) * Derive_n f k c)) by ring.
+        rewrite Sq. ring. }
+    match goal with |- Rabs (?a + ?r - ?a) <= _ => replace (a + r - a) with r by ring end.
+    assert (L := Last (- z) (- v) ltac:(lra) ltac:(lra)).
+    replace ((- v) ^ S K / INR (fact (S K)) * ((-1) ^ S K * Derive_n f (S K) (- z))) with ((-1) ^ S K * ((- v) ^ S K / INR (fact (S K)) * Derive_n f (S K) (- z))) by ring.
+    rewrite Rabs_mult, pow_1_abs, Rmult_1_l. exact L.
+  - rewrite Rplus_0_r. replace (sum_f_R0 _ K) with (f c).
+    + rewrite Rminus_diag_eq, Rabs_R0 by reflexivity. apply Rmult_le_pos; [exact B0|apply pow_le; lra].
+    + clear. induction K as [|K IH]; [cbn; field|]. cbn [sum_f_R0]. rewrite <- IH. rewrite pow_ne_zero by lia. unfold Rdiv. ring.
+  - destruct (Taylor_Lagrange f K c (c + v) ltac:(lra)) as [z [Hz E]].
+    { intros t Ht k Hk. apply D; [lra|exact Hk]. }
+    replace (c + v - c) with v in E by ring. rewrite E.
+    match goal with |- Rabs (?a + ?r - ?a) <= _ => replace (a + r - a) with r by ring end. apply Last; lra.
+Qed.
+
+(* Stance (3): x' = A x + b from s is Σ_j Φ_ij s_j + Φ_i0, Φ the solutions of x' = A x from unit vectors, Φ_0 of x' = A x + b from 0. *)
+Theorem flow (n : nat) (a b : R) (A : R -> matrix) (B : matrix) (free : R -> vector) (Phi : nat -> nat -> R -> R) (Phi0 x : nat -> R -> R) (s : vector) :
+  a < b -> (forall i j t, (i < n)%nat -> (j < n)%nat -> a < t < b -> Rabs (A t i j) <= B i j) ->
+  (forall i, (i < n)%nat -> continuous_over (between a b) (x i) /\ continuous_over (between a b) (Phi0 i) /\
+    forall j, (j < n)%nat -> continuous_over (between a b) (Phi i j)) ->
+  (forall i t, (i < n)%nat -> a < t < b -> is_derive (x i) t (sum n (fun k => A t i k * x k t) + free t i) /\
+    is_derive (Phi0 i) t (sum n (fun k => A t i k * Phi0 k t) + free t i) /\
+    forall j, (j < n)%nat -> is_derive (Phi i j) t (sum n (fun k => A t i k * Phi k j t))) ->
+  (forall i, (i < n)%nat -> x i a = s i /\ Phi0 i a = 0 /\ forall j, (j < n)%nat -> Phi i j a = if Nat.eqb i j then 1 else 0) ->
+  forall i t, (i < n)%nat -> between a b t -> x i t = sum n (fun j => Phi i j t * s j) + Phi0 i t.
+Proof.
+  intros L HB C D S0 i t Hi Ht.
+  set (u := fun i t => x i t - (sum n (fun j => Phi i j t * s j) + Phi0 i t)).
+  assert (Z : Rabs (u i t) <= 0).
+  { apply (comparison_of_solutions n a b B (fun _ => 0) u (fun _ _ => 0) (Rlt_le _ _ L)) with (i := i); trivial.
+    - intros k Hk. destruct (C k Hk) as [Cx [C0 Cp]]. split.
+      + apply (continuous_plus _ (x k) (fun t => - (sum n (fun j => Phi k j t * s j) + Phi0 k t))); trivial.
+        apply continuous_opposite. apply (continuous_plus _ (fun t => sum n (fun j => Phi k j t * s j)) (Phi0 k)); trivial.
+        apply (continuous_sum _ n (fun j t => Phi k j t * s j)). intros j Hj y Hy eps He.
+        destruct (continuous_scale _ _ (s j) (Cp j Hj) y Hy eps He) as [dl [Hd Q]]. exists dl. split; trivial.
+        intros z Hz Hzy. specialize (Q z Hz Hzy). now rewrite !(Rmult_comm (Phi k j _)).
+      + intros r Hr. destruct (D k r Hk Hr) as [Dx [D0 Dp]]. exists (A r k), 0. split; [|split; [intros j Hj; now apply HB|rewrite Rabs_R0; lra]].
+        replace (sum n (fun j => A r k j * u j r) + 0) with
+          ((sum n (fun q => A r k q * x q r) + free r k) - (sum n (fun j => sum n (fun q => A r k q * Phi q j r) * s j) + (sum n (fun q => A r k q * Phi0 q r) + free r k))).
+        * apply (is_derive_minus (V := R_NormedModule) (x k) (fun t => sum n (fun j => Phi k j t * s j) + Phi0 k t)); [exact Dx|].
+          apply (is_derive_plus (V := R_NormedModule) (fun t => sum n (fun j => Phi k j t * s j)) (Phi0 k)); [|exact D0].
+          apply (is_derive_sum n (fun j t => Phi k j t * s j)). intros j Hj.
+          apply (is_derive_ext (fun t => s j * Phi k j t)); [intros; apply Rmult_comm|]. rewrite Rmult_comm.
+          apply (is_derive_scal (Phi k j)). now apply Dp.
+        * assert (E : sum n (fun j => sum n (fun q => A r k q * Phi q j r) * s j) = sum n (fun q => A r k q * sum n (fun j => Phi q j r * s j))).
+          { rewrite (sum_ext n _ (fun j => sum n (fun q => A r k q * Phi q j r * s j))) by (intros; now rewrite <- sum_scale_r).
+            rewrite sum_swap. apply sum_ext. intros q _. rewrite <- sum_scale. apply sum_ext; intros; ring. }
+          rewrite E. unfold u. rewrite (sum_ext n (fun j => A r k j * (x j r - _)) (fun j => A r k j * x j r - (A r k j * sum n (fun q => Phi j q r * s q) + A r k j * Phi0 j r))) by (intros; ring).
+          rewrite sum_minus, sum_plus. ring.
+    - intros k Hk. split.
+      + intros y _ eps He. exists 1. split; [lra|]. intros. now rewrite Rminus_0_r, Rabs_R0.
+      + intros r Hr. exists 0. split; [apply (is_derive_const (V := R_NormedModule))|]. rewrite sum_zero by (intros; ring). lra.
+    - intros k j Hk Hj. eapply Rle_trans; [apply Rabs_pos|apply (HB k j ((a + b) / 2)); trivial; lra].
+    - intros k Hk. destruct (S0 k Hk) as [E1 [E2 E3]]. unfold u. rewrite E1, E2.
+      rewrite (sum_single n _ k Hk); [rewrite E3, Nat.eqb_refl by trivial; replace (s k - (1 * s k + 0)) with 0 by ring; rewrite Rabs_R0; lra|].
+      intros j Hj N. rewrite E3 by trivial. apply not_eq_sym, Nat.eqb_neq in N. rewrite N. ring. }
+  assert (P := Rabs_pos (u i t)). assert (E : Rabs (u i t) = 0) by lra. apply Rabs_eq_0 in E. unfold u in E. lra.
 Qed.
 
 (* A bound by the positive part of M would not do: u_1' = −u_2, u_2' = −u_1 has no positive entry, and grows as exp. *)

@@ -106,8 +106,8 @@ class SeveralResults(Results):
         return lower, everywhere
 
     def bounds_by_state(self) -> dict[str, Fraction]:
-        """proofs/several.md (2), (3), (8): the least bound of each state, by the norm and by comparison."""
-        lines = self.lines("componentwise", "componentwise")
+        """proofs/several.md (2), (3), (8): the least bound of each state, by the norm, by comparison, by polytopes."""
+        lines = [x for rule in ("componentwise", "attracting") for x in self.lines(rule, rule)]
         if any(line.domain is None or self.domain not in (line.domain, line.domain.of) for _, line in lines):
             raise Rejected("the comparison refers to another set")
         if not self.settled:

@@ -17,9 +17,9 @@ from ..claim.obligations import Domain, Obligation, Obligations
 from ..claim.provable import of_stance
 from ..contraction.graph import Samples
 from ..contraction.metrics import Proposal
-from ..contraction.norms import Norm
+from ..contraction.norms import Norm, floats
 from .one import COARSE, Known
-from .several import FEW, SeveralAttempt, floats
+from .several import FEW, SeveralAttempt
 
 
 class Shared(Encloser):
