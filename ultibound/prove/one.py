@@ -375,7 +375,7 @@ class Attempt:
 
     def _sector(self, domain: Domain, on: int, moves: list[Proved] | None) -> None:
         """Gain and residual of the sector route, where exactly one correction is named: proofs/sector.md."""
-        if moves is None or not applies(self.writer.derivation.statement):
+        if moves is None or not self.claim.correction or not applies(self.writer.derivation.statement):
             return
         try:
             obligations = self.obligations.sector(domain)
