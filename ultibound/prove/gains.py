@@ -34,7 +34,7 @@ SHARPER = 1e-2  # factor on the gap when a gain is undecided
 NEAR = Fraction(1, 2500)  # of a gain's size: how closely both ends are found
 STEP = Fraction(1, 20)  # of its size: the first step out
 OUTWARD = 12  # steps out, each twice as long
-CELLS = 10_000  # leaves of a range, at most: where more are wanted, a smaller piece serves better
+CELLS = 2000  # leaves of a range, at most: where more are wanted, a smaller piece serves better
 ROUNDS = 8  # of finding how far the gains go that contract
 LEAST, WANTED, MOST = 1.0, 1.05, 1.3  # how far a piece reaches over them
 Ends = tuple[Fraction, Fraction]
@@ -87,6 +87,10 @@ class Sensitivity(Attempt):
                 self.line = w.theorem("sensitivity-gain", f"sensitivity-gain[{self.gain}]", uses, concludes)
             except Rejected as why:
                 self.ranges.limits["sensitivity-gain"] = str(why)
+
+
+    def _over(self, number: int) -> None:
+        """Nothing of the requirements is asked here."""
 
 
 class Interval:
@@ -166,7 +170,10 @@ class Interval:
 
     def _refuted(self, bad: Fraction, side: int) -> None:
         """The nearest gain, nearly, beyond one that is not proved, at which a requirement is refuted."""
+        beyond = [x for (x, y) in self.known if x == y and (x - bad) * side > 0 and self._breaks(x)]
         undecided, step = None, self.size * NEAR
+        if beyond and not self._breaks(bad):
+            undecided, bad = bad, min(beyond, key=lambda x: x * side)
         for _ in range(OUTWARD):
             if self._breaks(bad):
                 break
@@ -195,7 +202,7 @@ class Interval:
         return set() if found is None else {x.verdict for x in found.results.requirements}
 
     def _attempt(self, low: Fraction, high: Fraction) -> Attempt | None:
-        """The proof of a piece: by the slope alone where that decides it, then by every route, then at a smaller gap.
+        """The proof of a piece: by the slope alone where that decides it, else by every route, else at a smaller gap.
 
         None where the claim has no meaning there.
         """
@@ -204,15 +211,15 @@ class Interval:
             claim, derivation = self._narrowed(low, high)
             claim = replace(claim, cells=min(claim.cells, CELLS))
             more = bool(claim.correction) and claim.route not in ("split", "sector")
-            ways = [(replace(claim, correction=()), self.gap)] if more else []
+            plain = replace(claim, correction=()) if more else claim
             self.known[low, high] = None
-            for each, gap in [*ways, (claim, self.gap), (claim, self.gap * SHARPER)]:
+            for each, gap in [(plain, self.gap), *([(claim, self.gap)] if more else []), (plain, self.gap * SHARPER)]:
                 found = self._one(each, derivation, gap, low, high)
                 if found is None:
                     break
                 self.known[low, high] = found
                 verdicts = {x.verdict for x in found.results.requirements}
-                if "undecided" not in verdicts or "refuted" in verdicts or (each is claim and not found.pursue):
+                if verdicts == {"proved"} or "refuted" in verdicts or (each is claim and not found.pursue):
                     break
         return self.known[low, high]
 
