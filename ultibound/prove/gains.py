@@ -88,7 +88,6 @@ class Sensitivity(Attempt):
             except Rejected as why:
                 self.ranges.limits["sensitivity-gain"] = str(why)
 
-
     def _over(self, number: int) -> None:
         """Nothing of the requirements is asked here."""
 
