@@ -77,7 +77,8 @@ def about(verdict: Verdict, path: str) -> Verdict:
 
 def told(line: dict[str, Any]) -> str:
     uses = f" from {', '.join(map(str, line['uses']))}" if line["uses"] else ""
-    ends = ", ".join(f"{k} {v}" for k, v in line["concludes"].items()) or "holds"
+    said = {**line["concludes"], **(line["witness"] if line["rule"] == "gains" else {})}
+    ends = ", ".join(f"{k} {v}" for k, v in said.items()) or "holds"
     return printable(f"{line['proves']}: {ends}  [{line['rule']}{uses}]")
 
 

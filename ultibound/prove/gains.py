@@ -7,6 +7,7 @@ then pieces of gains, each as large as it can be proved whole, cover what lies b
 from __future__ import annotations
 
 import time
+from dataclasses import replace
 from fractions import Fraction
 from math import floor, log10
 from typing import TYPE_CHECKING, Any
@@ -33,6 +34,7 @@ SHARPER = 1e-2  # factor on the gap when a gain is undecided
 NEAR = Fraction(1, 2500)  # of a gain's size: how closely both ends are found
 STEP = Fraction(1, 20)  # of its size: the first step out
 OUTWARD = 12  # steps out, each twice as long
+CELLS = 2000  # leaves of a range, at most: where more are wanted, a smaller piece serves better
 ROUNDS = 8  # of finding how far the gains go that contract
 LEAST, WANTED, MOST = 1.0, 1.05, 1.3  # how far a piece reaches over them
 Ends = tuple[Fraction, Fraction]
@@ -85,6 +87,9 @@ class Sensitivity(Attempt):
                 self.line = w.theorem("sensitivity-gain", f"sensitivity-gain[{self.gain}]", uses, concludes)
             except Rejected as why:
                 self.ranges.limits["sensitivity-gain"] = str(why)
+
+    def _over(self, number: int) -> None:
+        """Nothing of the requirements is asked here."""
 
 
 class Interval:
@@ -164,7 +169,10 @@ class Interval:
 
     def _refuted(self, bad: Fraction, side: int) -> None:
         """The nearest gain, nearly, beyond one that is not proved, at which a requirement is refuted."""
+        beyond = [x for (x, y) in self.known if x == y and (x - bad) * side > 0 and self._breaks(x)]
         undecided, step = None, self.size * NEAR
+        if beyond and not self._breaks(bad):
+            undecided, bad = bad, min(beyond, key=lambda x: x * side)
         for _ in range(OUTWARD):
             if self._breaks(bad):
                 break
@@ -193,29 +201,40 @@ class Interval:
         return set() if found is None else {x.verdict for x in found.results.requirements}
 
     def _attempt(self, low: Fraction, high: Fraction) -> Attempt | None:
-        """The proof of a piece, at a smaller gap too where that may decide it; None where the claim has no meaning."""
+        """The proof of a piece: by the slope alone where that decides it, else by every route, else at a smaller gap.
+
+        None where the claim has no meaning there.
+        """
         if (low, high) not in self.known:
+            self._alive()
             claim, derivation = self._narrowed(low, high)
+            claim = replace(claim, cells=min(claim.cells, CELLS))
+            more = bool(claim.correction) and claim.route not in ("split", "sector")
+            plain = replace(claim, correction=()) if more else claim
             self.known[low, high] = None
-            for gap in (self.gap, self.gap * SHARPER):
-                self._alive()
-                self.watch(f"{self.gain} from {to_float(low):.6g} to {to_float(high):.6g}", len(self.known), self.gap)
-                try:
-                    attempt = best(
-                        type(self.whole)(
-                            claim, gap, self.until, self.watch, self.whole.sharp, derivation=derivation, terse=True
-                        )
-                    )
-                except (ClaimError, Bad):
+            for each, gap in [(plain, self.gap), *([(claim, self.gap)] if more else []), (plain, self.gap * SHARPER)]:
+                found = self._one(each, derivation, gap, low, high)
+                if found is None:
                     break
-                if attempt.ranges.interrupted:
-                    self.whole.ranges.interrupted = True
-                    del self.known[low, high]
-                    raise Stopped
-                self.known[low, high] = attempt
-                if not attempt.pursue:
+                self.known[low, high] = found
+                verdicts = {x.verdict for x in found.results.requirements}
+                if verdicts == {"proved"} or "refuted" in verdicts or (each is claim and not found.pursue):
                     break
         return self.known[low, high]
+
+    def _one(self, claim: Claim, derivation: Derivation, gap: float, low: Fraction, high: Fraction) -> Attempt | None:
+        self.watch(f"{self.gain} from {to_float(low):.6g} to {to_float(high):.6g}", len(self.known), gap)
+        kind, sharp = type(self.whole), self.whole.sharp
+        try:
+            found = best(kind(claim, gap, self.until, self.watch, sharp, derivation=derivation, terse=True))
+        except (ClaimError, Bad):
+            return None
+        if found.ranges.interrupted:
+            self.whole.ranges.interrupted = True
+        if found.ranges.interrupted or time.monotonic() > self.until:
+            self.known.pop((low, high))
+            raise Stopped
+        return found
 
     def _narrowed(self, low: Fraction, high: Fraction) -> tuple[Claim, Derivation]:
         piece = Piece(self.gain, low, high)

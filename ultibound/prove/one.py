@@ -50,6 +50,7 @@ SQUARED_GAP = 1e-3  # of sums of squares
 FIRST = 200  # leaves, beside eight a cell, for an inequality before sums of squares are tried
 COURSE_GAP = 1e-3  # each part adds a phase and a value of every signal
 ASKED, UNASKED = 200, 60  # leaves, beside two a cell, where a requirement is about the gain and where none is
+LONG_RUN = ("settles", "bound", "sharp_bound", "radius", "push", "steps")  # which curves and orbits serve
 TRIED = 4  # orbits, the furthest first
 REACH, ENOUGH = 10_000, 200  # steps of the longest path, and of one that is longer than asked for
 
@@ -168,13 +169,15 @@ class Attempt:
             self._slope(domain, on, moves)
             self._split(domain, on, moves)
             self._sector(domain, on, moves)
-        if radius > 0:
+        far = not self.terse or any(r.kind in LONG_RUN for r in self.claim.requirements)
+        if radius > 0 and far:
             self._curve(domain, on, moves, lost)
         invariant = region or self._invariant_ball(ball)
         if invariant is not None:
             for pair in self.pairs.values():
                 self._bound(invariant, pair)
-            self._orbit(invariant)
+            if far:
+                self._orbit(invariant)
             self._paths(invariant, target.lower if target.lower == target.upper else None)
         for number, r in enumerate(self.claim.requirements, 1):
             if r.kind in RANGED and not self.variant:
@@ -393,7 +396,7 @@ class Attempt:
 
     def _sector(self, domain: Domain, on: int, moves: list[Proved] | None) -> None:
         """Gain and residual of the sector route, where exactly one correction is named: proofs/sector.md."""
-        if moves is None or not applies(self.writer.derivation.statement):
+        if moves is None or not self.claim.correction or not applies(self.writer.derivation.statement):
             return
         try:
             obligations = self.obligations.sector(domain)

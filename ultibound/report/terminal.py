@@ -12,7 +12,6 @@ from rich.text import Text
 from ..claim import Claim
 from .cells import Cell, finer
 from .inert import visible
-from .intervals import gain_intervals
 from .margins import judged
 
 CAUTION = (
@@ -49,12 +48,7 @@ def outcome(claim: Claim, results: dict[str, Any]) -> RenderableType:
         where += f"; norm: {_norm(results['metric'])}"
     where += f"; gain and residual are those of {claim.horizon} steps" if claim.horizon > 1 else ""
     more = [*_routes(results, unit), *(_stances(stances, units, results["metric"] is None) if stances else [])]
-    more += [Text("")] if results["gain_intervals"] else []
-    for x in gain_intervals(results):
-        said = [f"every requirement is proved {x.proved}" if x.proved else "no interval with every requirement proved"]
-        said += [f"one is refuted {x.refuted}"] if x.refuted else []
-        said += [f"contracting {x.contracting}"] if x.contracting else []
-        more.append(Text(f"gain {x.gain}: {'; '.join([*said, *([x.best] if x.best else [])])}"))
+    more += _gains(results["gain_intervals"])
     return Group(quantities, Text(where), *more, Text(""), _verdicts(claim, results), Text(""), Text(CAUTION))
 
 
@@ -130,6 +124,30 @@ def _routes(results: dict[str, Any], unit: str) -> list[RenderableType]:
         shown = [_figure(route[q]["upper"], "≤ ") if route[q] else "none" for q in ("gain", "residual", "bound")]
         table.add_row(name, *shown, "reported" if name == results["route"] else "")
     return [Text(""), table]
+
+
+def _gains(intervals: list[dict[str, Any]]) -> list[RenderableType]:
+    """For which gains every requirement is proved, which break one, and which contract."""
+    shown: list[RenderableType] = []
+    for x in intervals:
+        table = Table(show_edge=False, pad_edge=False)
+        for heading in (f"gain {x['gain']}", "from", "to", ""):
+            table.add_column(heading)
+        if x["inner"] is None:
+            table.add_row("every requirement is proved", "none", "none", "no gain was found for which they are")
+        else:
+            table.add_row("every requirement is proved", *map(_gain, x["inner"]), "for every gain between")
+            table.add_row("one is refuted", *map(_gain, x["outer"]), "at these nearest gains")
+        if x["contracting"] is not None:
+            table.add_row("contracting", *map(_gain, x["contracting"]), "every gain strictly between")
+        if x["best"] is not None:
+            table.add_row("best for the band", _gain(x["best"]["value"]), "", f"k {_figure(x['best']['gain'], '≤ ')}")
+        shown += [Text(""), table]
+    return shown
+
+
+def _gain(text: str | None) -> str:
+    return "none found" if text is None else f"{float(Fraction(text)):.7g}"
 
 
 def _stances(stances: dict[str, Any], units: dict[str, str], apart: bool) -> list[RenderableType]:
