@@ -11,6 +11,19 @@ from ultibound.certificate.certificate import Certificate
 from ultibound.claim import parse_claim
 from ultibound.prove import prove
 
+# of a quarter to two minutes each: what is shared out last should be short
+LONGEST = [
+    "test_stance_soundness", "test_spoiled", "test_stance_refused", "test_cli", "test_several", "test_campaign",
+    "test_several_soundness", "test_graph_soundness", "checker/test_graph_boundaries", "contraction/test_metrics",
+    "test_stance_tightness", "test_horizon", "test_soundness", "checker/test_flows", "published/test_several",
+]  # fmt: skip
+
+
+def pytest_collection_modifyitems(items: list[pytest.Item]) -> None:
+    """The longest files of tests first."""
+    rank = {f"tests/{name}.py": n for n, name in enumerate(LONGEST)}
+    items.sort(key=lambda item: rank.get(item.nodeid.split("::")[0], len(rank)))
+
 
 def pytest_terminal_summary(terminalreporter: pytest.TerminalReporter) -> None:
     """Tables that tests recorded, in whichever process they ran."""

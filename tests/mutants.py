@@ -290,6 +290,13 @@ EQUIVALENT: dict[Key, str] = {
     ("matrices", "definite", "(pivot * x - first * y) // before", "-(-(pivot * x - first * y) // before)"):
         "every division is exact: what is divided is a minor times the pivot before (proofs/matrix.md (4))",
     ("matrices", "whole", "unit // x.denominator", "-(-unit // x.denominator)"): "a common multiple of all denominators",
+    ("polynomials", "Expansion.corner", "side > 0", "side >= 0"): "a side is 1 or -1",
+    ("polynomials", "Expansion.corner", "side > 0", "side >= 0 (2)"): "a side is 1 or -1",
+    ("polynomials", "Expansion.reading.partial", "len(values) // 2", "-(-len(values) // 2)"): "a cell has an even number of corners",
+    ("polynomials", "size", "(m - n) // 2", "-(-(m - n) // 2)"): "n runs in steps of 2 from m",
+    ("polynomials", "size", "m - n", "m + n"): "a binomial of the other half of its symmetric row",
+    ("polynomials", "size", *(f"turned.get(to, Fraction(0)) {sign} c * Fraction(comb(m, (m - n) // 2) * (2 if n else 1), 2 ** m)" for sign in "+-")):
+        "all coefficients are turned alike, and magnitudes are taken",
     ("tables", "read_library", "set(axes) <= set(header)", "set(axes) < set(header)"):
         "where the axes are all columns there are, the other half of the condition refuses",
 }  # fmt: skip

@@ -16,6 +16,7 @@ from typing import Any
 
 import numpy as np
 
+from tests.adversary import LENGTH, SWEEPS, System, farthest
 from tests.campaign import NAMES, SMOOTH, library
 from tests.conftest import proved
 
@@ -465,6 +466,7 @@ class Run:
                 worst = np.maximum(worst, np.abs(error[:, on_target | (step > self.length - 40)]).max(axis=1))
         else:
             self.check_end(x, held, on_target, k)
+            worst = np.maximum(worst, self.led_away())
         room = np.minimum(c.high - 0.1, -c.low - 0.1)
         if stayed and np.all(worst < 0.6 * room):
             tally.contracting += 1
@@ -473,6 +475,19 @@ class Run:
             for bound, found in zip(self.bounds, worst, strict=True):
                 if bound is not None and found > 1e-9:
                     tally.ratios.setdefault(c.kind, []).append(bound / float(found))
+
+    def led_away(self) -> Any:
+        """How far states come from their targets in the long run if all values conspire: within the bounds."""
+        c, k = self.c, self.gain
+        if all(bound is None for bound in self.bounds):
+            return np.zeros(len(c.states))
+        found = farthest(System(len(c.states), c.step, c.aim, c.drawn), self.rng)
+        self.tally.steps += SWEEPS * LENGTH
+        wide = np.abs(np.linalg.inv(self.ball.rows)).sum(axis=1)
+        left = self.radius * wide * k ** (SWEEPS // 2 * LENGTH) if k is not None and k < 1 else 0.0 * wide
+        for bound, far, rest in zip(self.bounds, found, left, strict=True):
+            assert bound is None or far <= bound * (1 + 1e-6) + rest + 1e-9, (self.seed, "bound, led away")
+        return found
 
     def entry(self, that: str) -> dict[str, Any] | None:
         return next((e for e in self.results["requirements"] if e["that"].startswith(that)), None)

@@ -14,6 +14,7 @@ import pytest
 
 from tests.checker import (
     test_absorbed_boundaries,
+    test_attracting_boundaries,
     test_boundaries,
     test_graph_boundaries,
     test_horizon_boundaries,
@@ -22,6 +23,7 @@ from tests.checker import (
     test_product_boundaries,
     test_reading,
     test_several_boundaries,
+    test_squares_boundaries,
     test_stance_boundaries,
 )
 from tests.mutants import EQUIVALENT, Battery, Copies, Mutant, campaign, mutants, table
@@ -47,10 +49,11 @@ PROOFS = (
 )
 STANCES = ("calculus", "motion", "signals", "models", "rates", "flows")
 NORMS = ("matrices",)
-SEVERAL = ("jacobians", "several", "outcomes", "periodic", "products", "absorbed")
+SEVERAL = ("jacobians", "several", "outcomes", "periodic", "products", "absorbed", "attracting")
 GRAPHS = ("graph", "graph_outcomes")
+SQUARES = ("squares", "polynomials")
 READING = ("grammar", "numerals", "statement", "tables", "scope", "command")
-SAMPLE, SEED = 20, 20260101
+SAMPLE, SEED = 10, 20260101
 MOST_EQUIVALENT = 0.05
 
 
@@ -61,24 +64,31 @@ def copies() -> Copies:
 
 @pytest.fixture(scope="module")
 def found(copies: Copies) -> dict[str, list[Mutant]]:
-    return {m: mutants(m, copies.source[m]) for m in PROOFS + STANCES + NORMS + SEVERAL + GRAPHS + READING}
+    return {m: mutants(m, copies.source[m]) for m in PROOFS + STANCES + NORMS + SEVERAL + GRAPHS + SQUARES + READING}
 
 
 @pytest.fixture(scope="module")
 def batteries(copies: Copies) -> dict[str, Battery]:
     """Of each module."""
-    reading, stances = Battery(test_reading.CASES, 400), Battery(test_stance_boundaries.CASES)
+    squares_cases = {f"squares: {n}": q for n, q in test_squares_boundaries.CASES.items()}
+    reading, stances = Battery(test_reading.CASES, 400), Battery(test_stance_boundaries.CASES | squares_cases)
     norms = Battery(test_matrices.CASES)
     horizon_cases = {f"horizon: {n}": q for n, q in test_horizon_boundaries.CASES.items()}
-    orbits = test_periodic_boundaries.CASES | test_product_boundaries.CASES | test_absorbed_boundaries.CASES
-    several = Battery(test_several_boundaries.CASES | orbits | horizon_cases)
+    orbits = (
+        test_periodic_boundaries.CASES
+        | test_product_boundaries.CASES
+        | test_absorbed_boundaries.CASES
+        | test_attracting_boundaries.CASES
+    )
+    several = Battery(test_several_boundaries.CASES | orbits | horizon_cases | squares_cases)
     stance_cases = {f"stance: {n}": q for n, q in test_stance_boundaries.CASES.items()}
     graphs = Battery(test_graph_boundaries.CASES)
     several_cases = {f"several: {n}": q for n, q in test_several_boundaries.CASES.items()}
     graph_cases = {f"graph: {n}": q for n, q in test_graph_boundaries.CASES.items()}
-    proofs = Battery(test_boundaries.CASES | stance_cases | several_cases | graph_cases | horizon_cases)
+    proofs = Battery(test_boundaries.CASES | stance_cases | several_cases | graph_cases | horizon_cases | squares_cases)
     of_norms, of_reading = dict.fromkeys(NORMS, norms), dict.fromkeys(READING, reading)
     of_several = dict.fromkeys(SEVERAL, several) | dict.fromkeys(GRAPHS, graphs)
+    of_several |= dict.fromkeys(SQUARES, Battery(test_squares_boundaries.CASES))
     return dict.fromkeys(PROOFS, proofs) | dict.fromkeys(STANCES, stances) | of_norms | of_several | of_reading
 
 

@@ -378,7 +378,7 @@ def malformed_lines() -> None:
     first, shape = BASE["proof"][0], "a line has exactly rule, proves, uses, witness and concludes"
     for name, line in (("a list", []), ("a key more", {**first, "note": ""}), ("a key less", {k: v for k, v in first.items() if k != "uses"})):
         reject(f"line: {name}", but(BASE, "proof 0", line), "proof line 1", shape)
-    for rule in ("squares", "", None, 1, ["range"]):
+    for rule in ("cubes", "", None, 1, ["range"]):
         reject(f"rule {rule!r}", but(BASE, "proof 0 rule", rule), "proof line 1", "unknown rule")
     for proves in (None, 1, ["target[v]"]):
         reject(f"proves {proves!r}", but(BASE, "proof 0 proves", proves), "proof line 1", "unknown rule")

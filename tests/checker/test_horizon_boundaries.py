@@ -769,7 +769,7 @@ def what_has_to_stay_positive(checker: Any) -> None:
     for domain, lower, ok in ((wider, Q(1), True), (wider, Q("1" + STEP), True), (ball, Q(1), False), (None, Q(1), False), (wider, Q(0), False)):
         found = object.__new__(results.Results)
         line = results.Line("range", "support[1]", (), {"lower": lower, "upper": Q(2)}, domain)
-        found.variant, found.needed, found.domain, found.way, found.proof = 0, set(), ball, wider, checker.rules.Proof(None, {1: line})
+        found.variant, found.needed, found.domain, found.way, found.proof = results.OWN, set(), ball, wider, checker.rules.Proof(None, {1: line})
         assert found.above(1) is ok and found.above(2) is False
 
 

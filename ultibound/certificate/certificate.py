@@ -29,6 +29,10 @@ class Certificate:
     interrupted: bool = False
     accepted: Verdict | None = field(default=None, repr=False, compare=False)
 
+    def __reduce__(self) -> tuple[Any, ...]:
+        """Copies sent to other processes leave the verdict behind: there it would only be hearsay."""
+        return type(self), (self.entries, self.interrupted)
+
     @property
     def results(self) -> dict[str, Any]:
         """Quantities and verdicts: decimals as text, SI units."""

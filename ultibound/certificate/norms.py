@@ -120,10 +120,12 @@ class NormWriter(Writer):
             raise ValueError("no set")
         return list(Table(self.derivation, proves, domain, bits, self.flows()).leaves(list(trees)))
 
-    def matrix(self, proves: str, trees: Sequence[str], bits: int, on: int, leaves: list[Leaf]) -> int:
-        """The norm of a matrix over the set, as its leaves show it."""
+    def matrix(
+        self, proves: str, trees: Sequence[str], bits: int, on: int, leaves: list[Leaf], near: float = 0.0
+    ) -> int:
+        """The norm of a matrix over the set, as its leaves show it; of an ellipsoid it starts from what it is near."""
         _, norm = self.seen(proves, on)
-        most = Fraction(0)
+        most = Fraction(near * (1 - SLACK)) if norm.kind == "ellipsoid" and np.isfinite(near) else Fraction(0)
         for leaf in leaves:
             most = norm_over(norm, leaf, most)
         witness = {"bits": bits, "trees": list(trees)}

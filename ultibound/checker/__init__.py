@@ -52,6 +52,11 @@ def check(data: bytes, watch: Callable[[int, int], None] = lambda done, total: N
         entries = read(data)
     except Unreadable as why:
         return Verdict("unreadable", reason=str(why))
+    return verified(entries, watch)
+
+
+def verified(entries: dict[str, Any], watch: Callable[[int, int], None] = lambda done, total: None) -> Verdict:
+    """The verdict on the entries of a certificate, as `check` reads them."""
     number = 0
     place = "claim"
     try:

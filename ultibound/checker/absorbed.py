@@ -9,11 +9,12 @@ from .matrices import metric
 from .numerals import Rejected
 from .theorems import Line, Quantities
 
+RULES = ("ultimate-bound", "componentwise", "attracting")  # of bounds
+
 
 def absorbed(d: Derivation, proves: str, used: list[Line], claimed: Quantities) -> Domain:
     """|e_s| <= β_s in the end, β_s above a bound of s that is proved for trajectories from the set."""
-    rules = ("ultimate-bound", "componentwise")
-    if proves != "absorbed" or not used or any(x.rule not in rules for x in used):
+    if proves != "absorbed" or not used or any(x.rule not in RULES for x in used):
         raise Rejected("a box that absorbs rests on bounds")
     if d.statement.horizon != 1:
         raise Rejected("a box that absorbs is known for single steps only")
@@ -40,6 +41,6 @@ def absorbed(d: Derivation, proves: str, used: list[Line], claimed: Quantities) 
 
 def bound(line: Line, s: str, i: int) -> Fraction:
     """The bound of a state that a line shows: its own, or that of the norm along the state."""
-    if line.rule == "componentwise" or line.domain is None or line.domain.metric is None:
+    if line.rule != "ultimate-bound" or line.domain is None or line.domain.metric is None:
         return line.concludes[s]
     return line.concludes["bound"] * line.domain.metric.support(i)

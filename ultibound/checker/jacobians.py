@@ -27,7 +27,7 @@ class Table:
 
     def __init__(self, d: Derivation, proves: str, domain: Domain, bits: Any, flows: Flows | None) -> None:
         self.d, self.domain, self.a = d, domain, arithmetic(bits)
-        names = named(d, proves)
+        names = self.named(d, proves)
         meanings = [[d.meaning(name, domain) for name in row] for row in names]
         self.variables = together([m for row in meanings for m in row])
         if prod(len(v.cells) for v in self.variables) > MOST_CELLS:
@@ -42,6 +42,9 @@ class Table:
             for column in zip(*meanings, strict=True)
             for first, *others in [[m.root for m in column]]
         ]
+
+    def named(self, d: Derivation, proves: str) -> list[list[str]]:
+        return named(d, proves)
 
     def leaves(self, trees: Any) -> Iterator[Leaf]:
         """The matrix over every leaf of its splitting trees."""
@@ -106,6 +109,13 @@ class Table:
         box = [valued(v, at[v.name]) for v in self.variables]
         inside(self.d, self.domain, dict(zip((v.name for v in self.variables), box, strict=True)))
         return box
+
+
+class Joined(Table):
+    """[∂F/∂x | F(x*, w) − x*], the Jacobian over a set and the miss under the same values (proofs/polytope.md)."""
+
+    def named(self, d: Derivation, proves: str) -> list[list[str]]:
+        return [[*x, *y] for x, y in zip(named(d, "slopes"), named(d, "misses"), strict=True)]
 
 
 def named(d: Derivation, proves: str) -> list[list[str]]:

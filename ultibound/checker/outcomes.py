@@ -106,8 +106,8 @@ class SeveralResults(Results):
         return lower, everywhere
 
     def bounds_by_state(self) -> dict[str, Fraction]:
-        """proofs/several.md (2), (3), (8): the least bound of each state, by the norm and by comparison."""
-        lines = self.lines("componentwise", "componentwise")
+        """proofs/several.md (2), (3), (8): the least bound of each state, by the norm, by comparison, by polytopes."""
+        lines = [x for rule in ("componentwise", "attracting") for x in self.lines(rule, rule)]
         if any(line.domain is None or self.domain not in (line.domain, line.domain.of) for _, line in lines):
             raise Rejected("the comparison refers to another set")
         if not self.settled:
@@ -223,9 +223,10 @@ class SeveralResults(Results):
 
     def ranged(self, number: int, r: Any) -> Outcome:
         """What a point of a ball breaks may hold in the ball of another metric, unless the claim fixes the metric."""
-        found, line = super().ranged(number, r), self.one("range", f"require[{number}]")
+        found, lines = super().ranged(number, r), self.ranges(number)
         if found.verdict == "refuted" and not (self.kind == "region" or self.stated()):
-            return found if line is not None and not line.on_set else Outcome("undecided", found.value, found.attained)
+            known = bool(lines) and not any(x.on_set for x in lines)
+            return found if known else Outcome("undecided", found.value, found.attained)
         return found
 
     def settles(self) -> Outcome:

@@ -471,10 +471,13 @@ class Results:
             error = after
         return None
 
+    def ranges(self, number: int) -> list[Line]:
+        """Proofs of the range that a requirement asks for: proofs/squares.md (4)."""
+        return [x for rule in ("range", "squares") if (x := self.one(rule, f"require[{number}]")) is not None]
+
     def ranged(self, number: int, r: Any) -> Outcome:
         name = f"require[{number}]"
-        taken = self.attained(name)
-        lines = [x for rule in ("range", "squares") if (x := self.one(rule, name)) is not None]
+        taken, lines = self.attained(name), self.ranges(number)
         if self.partial:
             lines = [x for x in lines if not x.on_set]
         if self.partial and not (self.domain is not None and self.domain.ball):

@@ -8,6 +8,7 @@ from fractions import Fraction
 from itertools import product
 from typing import Any
 
+from .attracting import attracting
 from .calculus import Unprovable
 from .courses import arithmetic, orbit, path, place
 from .derive import Derivation, varied
@@ -50,6 +51,7 @@ SHAPES: dict[str, tuple[tuple[str, ...], tuple[str, ...] | None]] = {
     "componentwise": (("about", "b", "p"), None),  # one a state
     "invariant-rows": ((), ()),
     "absorbed": ((), None),  # one a state
+    "attracting": (("bits", "high", "low", "rows", "trees"), None),  # one a state
     "periodic": (("bits", "held", "start", "steps"), None),  # one a state
     "graph-regions": ((), ()),
     "graph-balls": ((), ()),
@@ -140,6 +142,9 @@ class Proof:
                     raise Rejected("a flow rests on no other line, and on dynamics")
                 flows = trajectory(d.terms, d.motion, d.statement.libraries, witness, claimed["error"])
                 line = Line(rule, proves, (), claimed, flows=flows)
+            elif self.graph is None and rule == "attracting":
+                line = replace(attracting(d, proves, used, witness, claimed), uses=tuple(uses))
+                self.leaves += line.leaves
             elif self.graph is None and (about := concluded(d, rule, proves, used, witness, claimed)) is not None:
                 line = replace(about, uses=tuple(uses))
                 self.leaves += about.leaves

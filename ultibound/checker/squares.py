@@ -17,7 +17,7 @@ from .models import Exponents
 from .numerals import Rejected, quantity
 from .polynomials import HIGHEST, Exactly, Expansion, Polynomial, Rounded, size
 
-MOST_PIECES, MOST_SQUARES, MOST_TERMS, MOST_ORDER = 10_000, 20_000, 5_000, 40
+MOST_PIECES, MOST_SQUARES, MOST_TERMS, MOST_ORDER, MOST_VARIABLES = 10_000, 20_000, 5_000, 40, 24
 LEAF = "q"
 WHOLE = r"-?[1-9][0-9]{0,399}"
 TERM = re.compile(rf"({WHOLE})(?:/([1-9][0-9]{{0,399}}))?((?: (?:0|[1-9][0-9]?))*)", re.ASCII)
@@ -27,17 +27,17 @@ def polynomial(text: Any, count: int, whole: bool) -> Polynomial:
     """From its terms, each a coefficient and the powers of all variables; whole numbers only where that is said."""
     if not isinstance(text, str):
         raise Rejected("polynomial: a text of terms")
+    if text.count(", ") >= MOST_TERMS:
+        raise Rejected(f"polynomial: at most {MOST_TERMS} terms")
     found: Polynomial = {}
     for part in text.split(", ") if text else ():
-        match = TERM.fullmatch(part)
+        match = TERM.fullmatch(part) if part.count(" ") == count else None
         powers = tuple(map(int, match[3].split())) if match else ()
-        if match is None or len(powers) != count or sum(powers) > HIGHEST or powers in found or (whole and match[2]):
+        if match is None or sum(powers) > HIGHEST or powers in found or (whole and match[2]):
             raise Rejected(f"polynomial: {part[:60]!r} is no term, or one of these powers stands twice")
         found[powers] = Fraction(int(match[1]), int(match[2] or 1))
         if found[powers].denominator != int(match[2] or 1) or match[2] == "1":
             raise Rejected(f"polynomial: {part[:60]!r} is not in lowest terms")
-        if len(found) > MOST_TERMS:
-            raise Rejected(f"polynomial: at most {MOST_TERMS} terms")
     return found
 
 
@@ -86,6 +86,8 @@ def end(p: Polynomial, stated: Any, sign: int, count: int) -> Fraction:
 def expansion_of(d: Derivation, meaning: Meaning, witness: dict[str, Any], flows: Flows | None) -> Expansion:
     """What finds the polynomials near an obligation: proofs/squares.md (2)."""
     count, order = len(meaning.variables), witness["order"]
+    if count > MOST_VARIABLES:
+        raise Rejected(f"squares: in at most {MOST_VARIABLES} variables")
     if type(order) is not int or not 0 <= order <= MOST_ORDER:
         raise Rejected(f"order: a whole number up to {MOST_ORDER}")
     bits = arithmetic(witness["bits"]).bits

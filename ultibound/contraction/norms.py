@@ -28,6 +28,10 @@ STALLED = 0.9  # of what is left to the gap: where twice as many leaves leave as
 FIRST_LOOK = 128  # leaves
 
 
+def floats(m: Sequence[Sequence[Fraction]]) -> Floats:
+    return np.array([[to_float(x) for x in row] for row in m])
+
+
 @dataclass(frozen=True, slots=True)
 class Entry:
     """An entry of the matrix, ready to run; `columns`: where its variables stand among those of all entries."""

@@ -6,9 +6,11 @@ the best w is the one with the largest ±u_sᵀ Aʲ m(w); one round of them, rep
 
 from __future__ import annotations
 
+import time
 from collections.abc import Callable, Sequence
 from dataclasses import dataclass
 from fractions import Fraction
+from math import inf
 
 import numpy as np
 
@@ -72,8 +74,11 @@ class Map:
         return np.array(rows).reshape(len(fresh), len(names))
 
 
-def courses(step: Map, slack: float, horizon: int) -> list[Course]:
-    """For each state the course of whole horizons that takes it furthest; none where the map has no value."""
+def courses(step: Map, slack: float, horizon: int, until: float = inf) -> list[Course]:
+    """For each state the course of whole horizons that takes it furthest; none where the map has no value.
+
+    `until`: the instant (of time.monotonic) at which orbits not closed by then are given up.
+    """
     tried = list[Trial]()
     for held in step.held:
         centre = np.array(step.target(held))
@@ -90,7 +95,7 @@ def courses(step: Map, slack: float, horizon: int) -> list[Course]:
                 chosen = tuple(step.fresh[k] for k in _chosen(a, miss, i, sign, horizon))
                 tried.append(Trial(held, centre, i, chosen))
     found: dict[str, Course] = {}
-    for trial, course in zip(tried, _followed(step, tried), strict=True):
+    for trial, course in zip(tried, _followed(step, tried, until), strict=True):
         s = step.states[trial.state]
         if course is not None and (s not in found or course.far > found[s].far * (1 + slack)):
             found[s] = course
@@ -110,14 +115,14 @@ def _chosen(a: Floats, miss: Floats, i: int, sign: float, horizon: int) -> list[
     return chosen[::-1]
 
 
-def _followed(step: Map, tried: list[Trial]) -> list[Course | None]:
+def _followed(step: Map, tried: list[Trial], until: float) -> list[Course | None]:
     """The orbits that rounds of choices lead to, from the target; all rounds go on side by side."""
     found: list[Course | None] = [None] * len(tried)
     values = [step.numbers(t.held, t.steps) for t in tried]
     x = np.array([t.centre for t in tried])
     before, far = x.copy(), [0.0] * len(tried)
     taken, going = 0, list(range(len(tried)))
-    while going:
+    while going and time.monotonic() < until:
         x[going] = step.after(x[going], np.array([values[k][taken % len(values[k])] for k in going]))
         taken += 1
         for k in list(going):

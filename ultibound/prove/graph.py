@@ -22,8 +22,9 @@ from ..checker.statement import read_statement
 from ..claim import Claim
 from ..claim.obligations import RANGED, Domain
 from ..contraction.graph import Family, Samples, bounds, families, radii
+from ..contraction.norms import floats
 from .one import COARSE, DECIDED, Attempt, Known
-from .several import SHARES, SPARE, floats
+from .several import SHARES, SPARE
 from .stances import StanceSearch, StepSearch
 
 TRIED = 6  # families of norms, the best by samples first

@@ -14,6 +14,7 @@ import numpy as np
 from ..bounding.evaluate import to_float
 from ..bounding.intervals import Floats
 from ..bounding.search import Effort
+from ..certificate.attracting import JOINED
 from ..certificate.enclosing import BITS, TWICE, Proved
 from ..certificate.lines import downward, upward
 from ..certificate.norms import NormWriter, moves_of
@@ -26,7 +27,7 @@ from ..claim import ClaimError
 from ..claim.constants import constant
 from ..claim.obligations import RANGED, Domain, Obligation, Variable, together
 from ..contraction.metrics import Proposal, proposals
-from ..contraction.norms import Matrices, Norm, Stretched, stretched
+from ..contraction.norms import Matrices, Norm, Stretched, floats, stretched
 from ..contraction.rounds import MOST_HELD, Map, courses
 from ..contraction.samples import combinations, drawn
 from ..contraction.words import Word, fastest
@@ -90,12 +91,13 @@ class SeveralAttempt(Attempt):
         invariant = on if images is not None else self._kept(ball, pair, tables, moves)
         if invariant is not None and pair is not None:
             self._bound(invariant, pair)
-            self._orbits([invariant, pair])
         if invariant is not None and moves is not None:
             for table in tables:
                 w.componentwise(invariant, *table, moves)
             if slopes is not None and misses is not None:
                 closed_in(self, invariant, slopes, misses, moves, list(self._bases()))
+            if pair is not None:
+                self._orbits([invariant, pair])
         for k, r in enumerate(self.claim.requirements, 1):
             if r.kind in RANGED and not self.variant:
                 self._range(k, through, way, self.domain, on)
@@ -220,6 +222,8 @@ class SeveralAttempt(Attempt):
         rows = [[self._miss(s, int(after or 0))] for s in o.states]
         if kind == "slopes":
             rows = [[o.slope(domain, s, x, int(after or 0)) for x in o.states] for s in o.states]
+        elif kind == JOINED:
+            rows = [[*(o.slope(domain, s, x) for x in o.states), self._miss(s)] for s in o.states]
         ready = [[(x, self.ranges.runner(x, False)) for x in row] for row in rows]
         if domain.kind != "ball" or norm is None:
             return Matrices(ready)
@@ -232,6 +236,8 @@ class SeveralAttempt(Attempt):
     def _form(self, proves: str, norm: Metric) -> Norm:
         """The norm in which a matrix is seen."""
         inverse = floats(norm.inverse) if proves.startswith("slopes") else None
+        if proves == JOINED:
+            inverse = np.diag([*np.diag(floats(norm.inverse)), 1.0])
         return Norm(floats(norm.rows), inverse, norm.kind == "ellipsoid")
 
     def _into(self, x: Floats, names: list[str], domain: Domain, norm: Metric) -> Floats:
@@ -332,7 +338,7 @@ class SeveralAttempt(Attempt):
             began = time.monotonic()
             try:
                 leaves = w.leaves(proves, found.trees, bits, on)
-                line = w.matrix(proves, found.trees, bits, on, leaves)
+                line = w.matrix(proves, found.trees, bits, on, leaves, found.upper)
             except (Undefined, Rejected) as why:
                 self.ranges.limits[proves] = str(why)
                 if not bits:  # fractions that grow too long
@@ -472,7 +478,7 @@ class SeveralAttempt(Attempt):
         held = frozenset(n for n, q in self.claim.uncertain.items() if q.held)
         bits = 0 if self.writer.exact("misses", uses[0]) else ORBIT_BITS
         steps = Map([*table.variables, *extra], o.states, run, target, held)
-        for course in courses(steps, self.gap, self.claim.horizon):
+        for course in courses(steps, self.gap, self.claim.horizon, self.ranges.until - self.ranges.spent):
             with suppress(Undefined, Rejected):
                 self.writer.periodic(course.start, course.held, course.steps, uses, bits)
 
@@ -493,7 +499,3 @@ def scaled(p: Proposal) -> Proposal:
     inverse = tuple(tuple(x / unit for x in row) for row in p.inverse)
     size = to_float(unit)
     return Proposal(p.kind, rows, inverse, p.gain, p.residual * size, p.radius * size)
-
-
-def floats(m: Matrix) -> Floats:
-    return np.array([[to_float(x) for x in row] for row in m])

@@ -17,9 +17,9 @@ from ..claim.obligations import Domain, Obligation, Obligations
 from ..claim.provable import of_stance
 from ..contraction.graph import Samples
 from ..contraction.metrics import Proposal
-from ..contraction.norms import Norm
+from ..contraction.norms import Norm, floats
 from .one import COARSE, Known
-from .several import FEW, SeveralAttempt, floats
+from .several import FEW, SeveralAttempt
 
 
 class Shared(Encloser):
@@ -51,7 +51,7 @@ class StanceSearch(SeveralAttempt):
     ) -> None:  # fmt: skip
         """`whole`: the proof of all stances; `others`: the ranges of all of them, so far."""
         self.claim, self.gap, self.until, self.watch = of_stance(claim, stance.name), gap, until, watch
-        self.stance, self.variant, self.known = stance, 0, known
+        self.stance, self.variant, self.known, self.terse = stance, 0, known, False
         self.obligations, self.writer = Obligations(self.claim), StanceWriter(whole.proof, whole.raw, stance.name)
         self.ranges = Shared(self.claim, self.obligations.graph, self.writer, gap, until, watch, others)
         self._flow()

@@ -11,12 +11,13 @@ import numpy as np
 
 from ..bounding.evaluate import Runner, to_float
 from ..bounding.intervals import Floats
+from ..checker.theorems import movement, movements
 from ..claim import Claim
 from ..claim.errors import Bad, ClaimError
 from ..claim.expression import Expression, Node
 from ..claim.model import Quantity, Range
 from ..claim.obligations import Domain, Obligation, Obligations, together
-from ..contraction.samples import drawn
+from ..contraction.samples import drawn, ends_of
 from ..polynomial.flows import FlowTable
 from ..stepmap.symbolic import compiled
 from .accepted import Accepted
@@ -86,6 +87,8 @@ class OverGain:
     k: Floats
     at: float
     proved: float | None
+    inner: tuple[float, float] | None = None  # every requirement is proved between
+    outer: tuple[float, ...] = ()  # one is refuted at
 
 
 @dataclass(frozen=True)
@@ -128,8 +131,7 @@ def gain_curve(found: Accepted, m: PointMap) -> GainCurve | None:
     size = rng.uniform(0, radius, POINTS)
     state = target + way * size[:, None]
     values |= {s: state[:, k] for k, s in enumerate(o.states)}
-    moved = sum(m.change(h) for s in o.states for h in o.moving(s)) if len(o.states) == 1 else 0.0
-    after = measured(results["metric"], o.states, m.next(values) - target) + moved
+    after = measured(results["metric"], o.states, m.next(values) - m.target(_moved(m, values, rng)))
     good = np.isfinite(after)
     bins = np.minimum((size[good] / radius * BINS).astype(int), BINS - 1)
     most = np.full(BINS, -np.inf)
@@ -141,7 +143,7 @@ def gain_curve(found: Accepted, m: PointMap) -> GainCurve | None:
     return GainCurve(
         rho[seen],
         phi[seen],
-        _shells(found, moved) if results["route"] == "curve" else (),
+        _shells(found) if results["route"] == "curve" else (),
         k,
         rest,
         end(pair["bound"], "upper"),
@@ -155,12 +157,25 @@ def _drawn(v: Any, rng: np.random.Generator) -> Floats:
     return drawn(Obligation("", 0, "", (v,), False), POINTS, rng)[:, 0]
 
 
-def _shells(found: Accepted, moved: float) -> tuple[tuple[float, float], ...]:
-    """Proved levels over the radii of the error curve, the movement of the target added."""
+def _moved(m: PointMap, values: dict[str, Floats], rng: np.random.Generator) -> dict[str, Floats]:
+    """Held quantities one step later, each as far on as it may be, either way."""
+    later = dict(values)
+    for v in m.held:
+        if m.claim.uncertain[v.name].change is not None:
+            side = rng.choice([-1.0, 1.0], POINTS) * m.change(v.name)
+            later[v.name] = np.clip(values[v.name] + side, *ends_of(v))
+    return later
+
+
+def _shells(found: Accepted) -> tuple[tuple[float, float], ...]:
+    """Proved levels over the radii of the error curve, with the proved movement of the target (proofs/curve.md)."""
     lines = found.derived.lines.values()
     shells = next((x for x in lines if x.rule == "shells" and not x.variant and not x.part), None)
-    if shells is None or shells.domain is None:
+    d = found.derived.derivation
+    slopes = [x for n in movements(d) for x in lines if (x.rule, x.proves) == ("range", n) and not x.variant]
+    if shells is None or shells.domain is None or len(slopes) != len(movements(d)):
         return ()
+    moved = to_float(movement(d, slopes))
     level, out = 0.0, []
     for j, radius in enumerate(shells.domain.radii, 1):
         line = next((x for x in lines if x.proves == f"shell[{j}]" and x.rule == "range" and not x.variant), None)
@@ -265,7 +280,12 @@ def _largest(found: Accepted, o: Obligations, slopes: Any, gain: str, values: Fl
         turned = v @ matrix @ inverse
         sizes = np.linalg.norm(turned, 2, axis=(1, 2)) if p is not None else np.abs(turned).sum(axis=2).max(axis=1)
         k[number] = sizes.max(initial=0.0)
-    return OverGain(gain, values, k, at, end(found.results["gain"], "upper"))
+    told: dict[str, Any] = next((x for x in found.results["gain_intervals"] if x["gain"] == gain), {})
+    inner = (
+        None if told.get("inner") is None else (to_float(exact(told["inner"][0])), to_float(exact(told["inner"][1])))
+    )
+    outer = tuple(to_float(exact(x)) for x in told.get("outer", ()) if x is not None)
+    return OverGain(gain, values, k, at, end(found.results["gain"], "upper"), inner, outer)
 
 
 def _slope(o: Obligations, slope: Obligation, flows: FlowTable | None) -> Runner:

@@ -14,7 +14,7 @@ from .cells import Cell
 from .curves import CellMap, bands, end, envelope, gain_curve, over_gain, plane
 from .document import Block, Figure
 from .margins import upper, with_unit
-from .walks import LATE, PointMap, Walks, point_maps, walked
+from .walks import PointMap, Walks, point_maps, walked
 
 MOST_GAINS = 4
 SEEDED = "Simulated runs and samples are estimates, seeded, and no part of the proof."
@@ -84,7 +84,7 @@ def _late(walks: Walks) -> tuple[float, ...]:
 
 def _envelope(found: Accepted, walks: Walks) -> Figure:
     data = envelope(found, walks)
-    late = float(data.courses[:, LATE:].max())
+    late = float(data.courses[:, walks.settled :].max())
     bound = max(data.bounds, default=None)
     said = f"Late in the simulated runs the error is at most {late:.4g} {data.unit}".rstrip()
     said += (
@@ -128,6 +128,8 @@ def _over_gain(data: Any) -> Figure:
     shown = f"{data.values[0]:.3g} to {data.values[-1]:.3g}"
     what = f"The gain k of a step over the controller gain {data.gain}: {span}, within the {shown} shown."
     caption = "An estimate from below, by derivatives at the same seeded points for every value; all else as claimed."
+    if data.inner is not None or data.outer:
+        caption += " The interval in which every requirement is proved, and gains at which one is refuted, are proved."
     return Figure(f"Gain of a step over {data.gain}", figures.svg(figures.over_gain(data)), what, (caption,))
 
 
@@ -151,5 +153,8 @@ def _cells(found: Accepted, cells: Sequence[Cell]) -> Figure:
     size = with_unit(upper({"lower": None, "upper": str(most.residual)}) or "", unit)
     what = f"Proved residual of {len(cells)} library cells; the largest, {size}, at {where}."
     return Figure(
-        "Residual by library cell", figures.svg(figures.residual_cells(data)), what, ("Proved, cell by cell.",)
+        "Residual by library cell",
+        figures.svg(figures.residual_cells(data)),
+        what,
+        (with_unit("Proved, cell by cell,", f"in {unit}" if unit else "").rstrip(",") + ".",),
     )

@@ -114,6 +114,7 @@ def envelope(data: Envelope, ax: Axis) -> None:
     steps = np.arange(data.courses.shape[1])
     for k, course in enumerate(data.courses):
         ax.plot(steps, course, color=QUIET, linewidth=0.8, marker="x+.1234"[k % 7], markersize=4,
+                markevery=max(1, len(steps) // 30),
                 label="simulated runs (estimate)" if not k else None)  # fmt: skip
     if data.proved is not None:
         ax.plot(steps, data.proved, color=INK, linewidth=2, label="proved envelope")
@@ -187,7 +188,11 @@ def over_gain(data: OverGain, ax: Axis) -> None:
     if data.proved is not None:
         ax.plot([data.at], [data.proved], "o", color=INK, markersize=7, label="proved at the claim's value")
     ax.axhline(1, color=INK, linewidth=1, linestyle="-.", label="k = 1: no contraction")
-    ax.set_ylim(0, 1.45 * max(1.1, float(data.k.max(initial=0.0))))
+    if data.inner is not None:
+        ax.axvspan(*data.inner, facecolor=FILL, edgecolor=INK, hatch="//", alpha=0.5, label="every requirement proved")
+    if data.outer:
+        ax.plot(data.outer, [0.04] * len(data.outer), "x", color=INK, markersize=8, label="one requirement refuted")
+    ax.set_ylim(0, (1.45 if data.inner is None else 1.8) * max(1.1, float(data.k.max(initial=0.0))))
     ax.set_xlabel(f"gain {data.gain} (in the claim's unit)")
     ax.set_ylabel("gain of a step k (1)")
     ax.legend(loc="upper center")

@@ -221,19 +221,16 @@ def _figure(parent: Element, figure: Figure) -> None:
     inner = SubElement(parent, "figure")
     drawing = fromstring(figure.svg)
     own = f"f{sha256(figure.svg.encode()).hexdigest()[:8]}-"  # names are of the page, so that no two figures share one
-    used = set(re.findall(r"#([\w.-]+)", figure.svg))
+    used = set(re.findall(r"(?:href=\"|url\()#([\w.-]+)", figure.svg))
     for e in drawing.iter():
         e.tag = e.tag.rpartition("}")[2]
         for key in list(e.attrib):
-            value = (
-                re.sub(r"#(?=[\w.-]+(\)|$))", f"#{own}", e.attrib.pop(key))
-                if "#" in e.get(key, "")
-                else e.attrib.pop(key)
-            )
-            if key != "id":
-                e.set(key.rpartition("}")[2], value)
-            elif value in used:
-                e.set("id", own + value)
+            value = e.attrib.pop(key).replace("url(#", f"url(#{own}")
+            key = key.rpartition("}")[2]
+            if key == "href":
+                value = f"#{own}{value.removeprefix('#')}"
+            if key != "id" or value in used:
+                e.set(key, own + value if key == "id" else value)
     for key in ("width", "height", "version"):
         drawing.attrib.pop(key, None)
     drawing.set("role", "img")

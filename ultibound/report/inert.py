@@ -11,7 +11,7 @@ import re
 _TEX = {
     "\\": r"\textbackslash{}", "{": r"\{", "}": r"\}", "$": r"\$", "&": r"\&", "#": r"\#", "_": r"\_", "%": r"\%",
     "^": r"\textasciicircum{}", "~": r"\textasciitilde{}", "<": r"\textless{}", ">": r"\textgreater{}",
-    "|": r"\textbar{}", '"': r"\char34{}", "'": "'", "`": r"\char96{}", "-": "{-}",
+    "|": r"\textbar{}", '"': r"\char34{}", "'": "'", "`": r"\char96{}",
 }  # fmt: skip
 _TEX_SIGNS = {
     "…": r"\dots{}", "·": r"\ensuremath{\cdot}", "×": r"\ensuremath{\times}", "−": r"\ensuremath{-}", "°":
@@ -53,7 +53,7 @@ def tex(text: str) -> str:
             found.append(_TEX.get(c, c))
         else:
             found.append(_TEX_SIGNS.get(c, f"[U+{ord(c):04X}]"))
-    return "".join(found)
+    return "".join(found).replace("--", "-{}-{}")  # two hyphens are not a dash
 
 
 def markdown(text: str) -> str:

@@ -78,7 +78,7 @@ def unit_of(claim: Claim, r: Requirement) -> str:
         known = states.get(r.by or "") or claim.uncertain.get(r.by or "")
         of = units.get(r.state or "", "")
         if known is None:
-            return f"({of}) per unit of {r.by}" if of else ""
+            return f"{of} per unit of {r.by}" if of else ""
         return f"({of})/({known.unit})" if of and known.unit else ""
     if r.kind in ("gain", "always", "throughout", "value"):
         return ""

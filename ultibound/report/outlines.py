@@ -25,6 +25,9 @@ PAGES = {
     "invariant-rows": ("several.md", "the ball is led into itself, row by row of its norm"),
     "course": ("horizon.md", "what the steps within a horizon stay in"),
     "slope": ("slope.md", "gain and residual from slopes and what is missed at the target"),
+    "sector": ("sector.md", "gain and residual from the sensitivity to the correction and the correction's own slope"),
+    "gains": ("sensitivity-gain.md", "a piece of gains, or one gain: what follows is about the claim with these"),
+    "sensitivity-gain": ("sensitivity-gain.md", "the gains between which every step contracts, and the best of them"),
     "split": ("split.md", "gain and residual with gaits and correction told apart"),
     "shells": ("curve.md", "shells about the target"),
     "curve": ("curve.md", "a line above the error curve, and the sharp bound"),
@@ -57,6 +60,11 @@ GROUPS = (
             "slopes",
             "misses",
             "split-slope",
+            "sector-sensitivity",
+            "sector-gain",
+            "sector-start",
+            "sector-residual",
+            "sector",
             "split-residual",
             "split",
             "shells",
@@ -68,6 +76,7 @@ GROUPS = (
     ("Bounds in the long run", ("bound", "componentwise", "absorbed")),
     ("Orbits and paths: what surely happens", ("orbit", "path", "periodic")),
     ("Requirements about ranges", ("require",)),
+    ("Pieces of a gain: the same proof for other gains", ("gains",)),
 )
 
 
@@ -76,6 +85,8 @@ DOWN = ("distance", "highest", "lower", "radius", "steps")  # what is surely rea
 
 def kind(proves: str) -> str:
     """The obligation a line is about, without stance, ranges of its own, steps and arguments."""
+    if proves.startswith("gains["):
+        return "gains"
     rest = proves.rpartition(":")[2]
     return rest.partition("[")[0].partition("@")[0]
 

@@ -23,8 +23,8 @@ from .document import (
 from .inert import visible
 from .typeset import plain as formula_plain
 
-WIDTH = 100
-MOST = 44  # letters of a column before it is broken into lines
+WIDTH = 90
+MOST = 34  # letters of a column before it is broken into lines
 
 
 def plain(document: Document) -> str:

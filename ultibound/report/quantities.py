@@ -50,7 +50,7 @@ def quantities(found: Accepted) -> list[Quantity]:
         ]
     for b in results["sensitivities"]:
         name = row(op("∂"), symbol(b["of"], "+"), op("/"), op("∂"), symbol(b["by"]))
-        ends: Text = (f"from {lower(b)} to {upper(b)}",)
+        ends: Text = ("from ", _number(lower(b) or ""), " to ", _number(upper(b) or ""))
         rows.append(Quantity(("sensitivity ", name), ends, ("–",), "–", ""))
     return rows
 

@@ -13,6 +13,7 @@ from .document import Block, Caution, Code, Document, Items, Section, Table, Tex
 from .drawn import Drawings, drawings
 from .figures import HOW
 from .formula import symbol
+from .intervals import gain_intervals
 from .margins import Judged, exact, judged, lower, rounded, signed, upper, with_unit
 from .outlines import kind, outline, place
 from .quantities import quantities
@@ -162,7 +163,7 @@ def _limits(found: Accepted, cells: list[Cell], drawn: Drawings) -> list[Block]:
     blocks += _gain_intervals(results)
     blocks += drawn.of("over-gain", "sensitivity")
     if len(cells) > 1:
-        blocks.append(_cells(cells, unit))
+        blocks.append(_cells(cells, unit, {n: q.unit for n, q in (*states.items(), *claim.uncertain.items())}))
         blocks.append(
             said(
                 "By interpolation: an estimate, not "
@@ -181,19 +182,18 @@ def _routes(results: dict[str, Any], unit: str) -> Table:
         rows.append(((name,), *((x,) for x in shown), ("reported" if name == results["route"] else "",)))
     of = f" ({unit})" if unit else ""
     head: tuple[Text, ...] = (("route",), ("gain",), (f"residual{of}",), (f"bound{of}",), ("",))
-    return Table(("What each route proves; the least bound is reported",), head, tuple(rows), "lrrrl")
+    return Table(("What each route proves",), head, tuple(rows), "lrrrl")
 
 
 def _worst(found: Accepted) -> list[Block]:
     """Points of the proof at which slopes and misses are largest."""
     rows = []
     for line in found.proof:
-        if line["rule"] == "point" and kind(line["proves"]) in (
-            "slope",
-            "target-miss",
-            "split-slope",
-            "split-residual",
-            "require",
+        own = not line["proves"].startswith("over[")
+        if (
+            own
+            and line["rule"] == "point"
+            and kind(line["proves"]) in ("slope", "target-miss", "split-slope", "split-residual", "require")
         ):
             end = min((line["concludes"]["lower"], line["concludes"]["upper"]), key=lambda x: abs(exact(x)))
             rows.append(
@@ -223,27 +223,25 @@ def _named(claim: Claim, proves: str) -> Text:
 
 
 def _gain_intervals(results: dict[str, Any]) -> list[Block]:
-    rows = []
-    for one in results["gain_intervals"]:
-        ends = [
-            f"from {rounded(one[x][0], True)} to {rounded(one[x][1], False)}" if one.get(x) else "–"
-            for x in ("inner", "outer")
-        ]
-        rows.append(((symbol(one["gain"]),), (ends[0],), (ends[1],)))
-    if not rows:
-        return []
-    head: tuple[Text, ...] = (("gain",), ("proved to satisfy every requirement",), ("nothing outside does",))
-    return [Table(("Gain intervals",), head, tuple(rows))]
+    head: tuple[Text, ...] = (("gain",), ("every requirement proved",), ("one refuted",), ("contracting",), ("best",))
+    rows: list[tuple[Text, ...]] = []
+    for x in gain_intervals(results):
+        rows.append(((symbol(x.gain),), *((t or "–",) for t in (x.proved, x.refuted, x.contracting, x.best))))
+    return [Table(("Gain intervals, all else as claimed",), head, tuple(rows))] if rows else []
 
 
-def _cells(cells: list[Cell], unit: str) -> Table:
+def _cells(cells: list[Cell], unit: str, units: dict[str, str]) -> Table:
     ordered = sorted(cells, key=lambda c: -c.residual)
     rows = []
     for c in ordered[:MOST_CELLS]:
         ends = [(f"{rounded(a, False, 4)} to {rounded(b, True, 4)}",) for a, b in c.ends.values()]
         rows.append((*ends, (f"≤ {rounded(c.residual, True, 5)}",), (f"{c.interpolated:.2g}",)))
-    of = f" {unit}" if unit else ""
-    head: tuple[Text, ...] = (*((symbol(n),) for n in cells[0].ends), (f"residual{of}",), (f"by interpolation{of}",))
+    of = f" ({unit})" if unit else ""
+    head: tuple[Text, ...] = (
+        *((symbol(n), f" ({units[n]})" if units.get(n) else "") for n in cells[0].ends),
+        (f"residual{of}",),
+        (f"by interpolation{of}",),
+    )
     more: Text = (f"The {MOST_CELLS} largest of {len(cells)}.",) if len(cells) > MOST_CELLS else ()
     return Table(("Proved residual by library cell",), head, tuple(rows), "l" * len(cells[0].ends) + "rr", more)
 

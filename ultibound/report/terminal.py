@@ -12,6 +12,7 @@ from rich.text import Text
 from ..claim import Claim
 from .cells import Cell, finer
 from .inert import visible
+from .intervals import gain_intervals
 from .margins import judged
 
 CAUTION = (
@@ -48,6 +49,12 @@ def outcome(claim: Claim, results: dict[str, Any]) -> RenderableType:
         where += f"; norm: {_norm(results['metric'])}"
     where += f"; gain and residual are those of {claim.horizon} steps" if claim.horizon > 1 else ""
     more = [*_routes(results, unit), *(_stances(stances, units, results["metric"] is None) if stances else [])]
+    more += [Text("")] if results["gain_intervals"] else []
+    for x in gain_intervals(results):
+        said = [f"every requirement is proved {x.proved}" if x.proved else "no interval with every requirement proved"]
+        said += [f"one is refuted {x.refuted}"] if x.refuted else []
+        said += [f"contracting {x.contracting}"] if x.contracting else []
+        more.append(Text(f"gain {x.gain}: {'; '.join([*said, *([x.best] if x.best else [])])}"))
     return Group(quantities, Text(where), *more, Text(""), _verdicts(claim, results), Text(""), Text(CAUTION))
 
 

@@ -14,6 +14,7 @@ K, EPS, E0, EN, N = symbol("k"), symbol("epsilon"), symbol("e0"), symbol("e_n"),
 ROUTES = {
     "slope": "slopes of the map over the whole set, and what it misses at the target",
     "split": "the nominal gait and the controller's correction told apart",
+    "sector": "how the next state follows the correction, and the correction the error",
     "curve": "the error curve: how far a step leads from within each distance",
 }
 
@@ -168,35 +169,40 @@ def for_a_paper(found: Accepted) -> list[Block]:
 
 def paragraph(found: Accepted) -> Text:
     """One paragraph for a paper."""
-    results, claim = found.results, found.claim
-    states = claim.stances[0].states
-    said: list[Any] = []
+    results, states = found.results, found.claim.stances[0].states
+    far: list[Text] = []
     for s in states:
-        figures = results["states"][s]
-        b = upper(figures["bound"])
+        b = upper(results["states"][s]["bound"])
         if b is not None:
-            said += [
-                ", " if said else "",
-                bars(minus(symbol(s), symbol(s, "*"))),
-                " at most ",
-                figure(b),
-                f" {states[s].unit}",
-            ]
+            far.append((bars(minus(symbol(s), symbol(s, "*"))), " at most ", figure(b), f" {states[s].unit}"))
     counts = [sum(r["verdict"] == v for r in results["requirements"]) for v in ("proved", "refuted", "undecided")]
-    opening: Text = (
-        (
+    opening: Text = ("No bound in the long run is proved. ",)
+    if far:
+        opening = (
             "For the step-to-step map stated, every start in the certified set and every admissible course of the "
-            "uncertain quantities, in the long run ",
-            *said,
+            "uncertain "
+            "quantities, in the long run ",
+            *(x for k, each in enumerate(far) for x in ((", " if k else ""), *each)),
+            *_pair(found),
             ". ",
         )
-        if said
-        else ("No bound in the long run is proved. ",)
-    )
     return (
         *opening,
         f"Of {sum(counts)} requirements {counts[0]} are proved, {counts[1]} refuted and {counts[2]} undecided. These "
-        f"are proved enclosures, not samples: a certificate of {found.lines} proof lines (SHA-256 "
-        f"{found.digest[:16]}..., made with ultibound {found.made_with.get('ultibound', '?')}) can be re-verified "
-        "with a checker that needs Python alone. They are about the model, not about a machine.",
+        "are "
+        f"proved enclosures, not samples: a certificate of {found.lines} proof lines (SHA-256 {found.digest[:16]}..., "
+        "made "
+        f"with ultibound {found.made_with.get('ultibound', '?')}) can be re-verified with a checker that needs Python "
+        "alone. They are about the model, not about a machine.",
     )
+
+
+def _pair(found: Accepted) -> Text:
+    """Gain and residual of the reported route; of stances there is one a step."""
+    results, states = found.results, found.claim.stances[0].states
+    pair = results["routes"].get(results["route"]) or results
+    k, rest = upper(pair["gain"]), upper(pair["residual"])
+    if k is None or rest is None or found.claim.stances[0].name:
+        return ()
+    unit = next(iter(states.values())).unit if len(states) == 1 else "in the norm"
+    return " (gain ", figure(k), ", residual ", figure(rest), f" {unit})".replace(" )", ")")

@@ -229,7 +229,7 @@ def _put(parent: Element, f: Formula, least: int = 0) -> None:
         case "dot":
             over = SubElement(parent, "mover", accent="true")
             _put(SubElement(over, "mrow"), parts[0], 4)
-            _leaf(over, "mo", "." if len(f.text) == 1 else "." * len(f.text))
+            _leaf(over, "mo", {1: "˙", 2: "¨"}.get(len(f.text), "." * len(f.text)))
         case "parentheses":
             _put_list(parent, f)
         case "cases":

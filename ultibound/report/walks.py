@@ -26,7 +26,8 @@ from ..stepmap.symbolic import compiled
 from .accepted import Accepted
 from .margins import exact
 
-STEPS, LATE, SEED, MOST_CHOICES, DIRECTIONS = 30, 20, 0, 48, 8
+LATE, LONGEST, MORE, SEED, MOST_CHOICES, DIRECTIONS = 20, 400, 10, 0, 48, 8
+LEFT = 1e-6  # share of the bound that may be left of where a run starts
 
 
 def flow_table(witness: Mapping[str, Any], motion: Motion) -> FlowTable:
@@ -93,14 +94,15 @@ def _at(runners: Sequence[Runner], values: Mapping[str, Floats]) -> Floats:
 
 @dataclass(frozen=True)
 class Walks:
-    """Simulated errors (runs, steps + 1, states), and the stance each was taken in."""
+    """Simulated errors (runs, steps + 1, states), the stance of each step, and the step they count as late from."""
 
     errors: Floats
     stances: tuple[str, ...]
+    settled: int
 
     def late(self) -> Floats:
         """The last steps of every run: what is left in the long run."""
-        found: Floats = self.errors[:, LATE:]
+        found: Floats = self.errors[:, self.settled :]
         return found
 
 
@@ -110,6 +112,17 @@ def point_maps(found: Accepted) -> list[PointMap]:
     if not claim.stances[0].name:
         return [PointMap(claim, found)]
     return [PointMap(of_stance(claim, s.name), found, s.name) for s in claim.stances]
+
+
+def settling(found: Accepted) -> int:
+    """Steps after which little is left of where a run started, by the gain of the route; some, where there is none."""
+    results, horizon = found.results, found.claim.horizon
+    pair = results["routes"].get(results["route"]) or results
+    ends = [(pair["gain"], "upper"), (pair["bound"], "upper"), (results["radius"], "upper")]
+    k, bound, radius = (0.0 if x is None or x[end] is None else to_float(exact(x[end])) for x, end in ends)
+    if not (0 < k < 1 and 0 < bound < radius < np.inf):
+        return LATE
+    return int(np.clip(horizon * np.log(LEFT * bound / radius) / np.log(k), LATE, LONGEST))
 
 
 def walked(
@@ -125,7 +138,8 @@ def walked(
     ways = _ways(count, np.asarray(reach), rng)
     names = [s.name for s in claim.stances]
     order = [0]
-    for _ in range(STEPS):
+    settled = settling(found)
+    for _ in range(settled + MORE):
         order.append(names.index(claim.stances[order[-1]].then[0]) if names[0] else 0)
     held = _held(maps, len(ways), known, rng)
     error = np.where(np.abs(ways).max(axis=1, keepdims=True) == 1, ways, 0.0) * np.asarray(reach)
@@ -137,7 +151,7 @@ def walked(
         errors.append(state - maps[after].target(_needed(maps[after], held, len(ways))))
     kept = np.stack(errors, axis=1)
     finite = np.isfinite(kept).all(axis=(1, 2))
-    return Walks(kept[finite], tuple(names[k] for k in order)) if finite.any() else None
+    return Walks(kept[finite], tuple(names[k] for k in order), settled) if finite.any() else None
 
 
 def _aimed(maps: Sequence[PointMap], order: Sequence[int], ways: Floats) -> list[Floats]:
@@ -170,10 +184,10 @@ def _slope(m: PointMap) -> Floats:
 
 
 def _ways(states: int, reach: Floats, rng: np.random.Generator) -> Floats:
-    """Directions: each state up and down, and of several states some between."""
+    """Directions: each state up and down; then some that start at the target, of several states between the others."""
     each = np.concatenate([np.eye(states), -np.eye(states)])
     if states == 1:
-        return each
+        return np.concatenate([each, each / 2])
     more = rng.standard_normal((DIRECTIONS, states))
     return np.concatenate([each, 0.99 * more / np.abs(more).max(axis=1, keepdims=True)])
 
