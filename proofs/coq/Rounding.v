@@ -247,3 +247,132 @@ Proof.
   { replace (c * Rmax 1 E * (2 * E)) with (2 * c * (Rmax 1 E * E)) by ring. apply Rmult_le_compat_l; lra. }
   assert (B4 : 0 <= loss * (E + y)) by (apply Rmult_le_pos; lra). split; [lra|]. nra.
 Qed.
+
+(** The terms of cos x (a = 0) and sin x (a = 1), x = r/unit in [0, 4/5], each rounded down, in units; the square of r rounded down too. *)
+Fixpoint wave_term (a : nat) (r unit : Z) (k : nat) : Z := match k with
+  | O => match a with O => unit | _ => r end
+  | S j => (wave_term a r unit j * (r * r / unit) / unit / Z.of_nat ((2 * j + 1 + a) * (2 * j + 2 + a)))%Z end.
+
+Definition alternate (k : nat) : R := if Nat.even k then 1 else -1.
+
+Lemma alternate_pow k : (-1) ^ k = alternate k.
+Proof.
+  unfold alternate. induction k as [|k IH]; [reflexivity|]. cbn [pow]. rewrite IH, Nat.even_succ, <- Nat.negb_even.
+  destruct (Nat.even k); cbn; ring.
+Qed.
+
+(** Of alternating magnitudes below c half add up. *)
+Lemma alternating_losses (e : nat -> R) (c : R) (n : nat) : (forall k, 0 <= e k <= c) -> e O = 0 ->
+  - (INR n * c) <= sum (S (2 * n)) (fun k => alternate k * e k) <= INR n * c.
+Proof.
+  intros B Z. induction n as [|n IH]; [cbn; rewrite Z; lra|].
+  replace (S (2 * S n)) with (S (S (S (2 * n)))) by lia. cbn [sum]. rewrite S_INR.
+  assert (E1 : alternate (S (2 * n)) = -1) by (unfold alternate; rewrite Nat.even_succ, <- Nat.negb_even, Nat.even_mul; reflexivity).
+  assert (E2 : alternate (S (S (2 * n))) = 1) by (unfold alternate; cbn [Nat.even]; rewrite Nat.even_mul; reflexivity).
+  rewrite E1, E2. assert (B1 := B (S (2 * n))). assert (B2 := B (S (S (2 * n)))). cbn [sum] in IH. lra.
+Qed.
+
+(** Partial sums of sine and cosine in the standard library: those with an even number of further terms are above, those with one more below. *)
+Lemma wave_bounds (a : nat) (x : R) (n : nat) : (a <= 1)%nat -> 0 <= x <= 4 / 5 -> (0 < n)%nat ->
+  let f := match a with O => cos x | _ => sin x end in
+  let part m := sum (S m) (fun k => alternate k * (x ^ (2 * k + a) / INR (fact (2 * k + a)))) in
+  part (2 * n + 1)%nat <= f <= part (2 * n)%nat.
+Proof.
+  intros Ha Hx Hn f part.
+  assert (Sf : forall g m, sum_f_R0 g m = sum (S m) g).
+  { intros g m. induction m as [|m IH]; [cbn; ring|]. cbn [sum_f_R0]. rewrite IH. reflexivity. }
+  assert (Ext : forall m, part m = match a with O => cos_approx x m | _ => sin_approx x m end).
+  { intro m. unfold part. destruct a as [|[|a]]; [| |lia]; unfold cos_approx, sin_approx; rewrite Sf; apply sum_ext; intros k _;
+      unfold cos_term, sin_term; rewrite alternate_pow; [rewrite Nat.add_0_r|]; reflexivity. }
+  destruct n as [|n]; [lia|]. rewrite !Ext. unfold f. destruct a as [|[|a]]; [| |lia].
+  - assert (C := pre_cos_bound x n ltac:(lra) ltac:(lra)). assert (C' := pre_cos_bound x (S n) ltac:(lra) ltac:(lra)). replace (2 * (n + 1))%nat with (2 * S n)%nat in C by lia. lra.
+  - assert (C := pre_sin_bound x n ltac:(lra) ltac:(lra)). assert (C' := pre_sin_bound x (S n) ltac:(lra) ltac:(lra)). replace (2 * (n + 1))%nat with (2 * S n)%nat in C by lia. lra.
+Qed.
+
+(* Series 2: with N = 2n terms computed after the first, the last of them 0, sin x and cos x lie within 3N/4 + 3/2 units of the alternating sum. *)
+Theorem wave_series (a : nat) (r unit : Z) (n : nat) : (a <= 1)%nat -> (0 < unit)%Z -> (0 <= r)%Z -> (5 * r <= 4 * unit)%Z -> (0 < n)%nat ->
+  wave_term a r unit (2 * n) = 0%Z ->
+  let x := IZR r / IZR unit in let total := sum (S (2 * n)) (fun k => alternate k * IZR (wave_term a r unit k)) in
+  Rabs (match a with O => cos x | _ => sin x end * IZR unit - total) <= 3 * INR (2 * n) / 4 + 3 / 2.
+Proof.
+  intros Ha Pu Pr L Hn Z0 x total.
+  assert (Pu' : 0 < IZR unit) by (apply (IZR_lt 0); trivial).
+  assert (Hx : 0 <= x <= 4 / 5).
+  { unfold x. apply IZR_le in L. rewrite !mult_IZR in L. apply (IZR_le 0) in Pr. split.
+    - apply Rmult_le_pos; [exact Pr|left; now apply Rinv_0_lt_compat].
+    - apply (Rmult_le_reg_r (IZR unit)); trivial. unfold Rdiv at 1. rewrite Rmult_assoc, Rinv_l by lra. lra. }
+  set (t := fun k => IZR unit * (x ^ (2 * k + a) / INR (fact (2 * k + a)))).
+  assert (Ft : forall k, 1 <= INR (fact k)) by (intro k; apply (le_INR 1), lt_O_fact).
+  assert (Px : forall k, 0 <= x ^ k <= 1).
+  { intro k. split; [apply pow_le; lra|]. assert (Q := pow_incr x 1 k ltac:(lra)). now rewrite pow1 in Q. }
+  assert (Tp : forall k, 0 <= t k <= IZR unit).
+  { intro k. unfold t. specialize (Px (2 * k + a)%nat). specialize (Ft (2 * k + a)%nat).
+    assert (0 <= x ^ (2 * k + a) / INR (fact (2 * k + a)) <= 1).
+    { split; [apply Rmult_le_pos; [lra|left; apply Rinv_0_lt_compat; lra]|].
+      apply (Rmult_le_reg_r (INR (fact (2 * k + a)))); [lra|]. unfold Rdiv. rewrite Rmult_assoc, Rinv_l by lra. lra. }
+    nra. }
+  set (c := fun k => INR ((2 * k + 1 + a) * (2 * k + 2 + a))).
+  assert (Hc : forall k, 2 <= c k) by (intro k; unfold c; apply (le_INR 2); nia).
+  assert (Hc' : forall k, 12 <= c (S k)) by (intro k; unfold c; replace 12 with (INR 12) by (cbn; ring); apply le_INR; nia).
+  assert (Tn : forall k, t (S k) = t k * (x * x) / c k).
+  { intro k. unfold t, c. replace (2 * S k + a)%nat with (S (S (2 * k + a))) by lia. rewrite !fact_simpl, !mult_INR.
+    replace (2 * k + 1 + a)%nat with (S (2 * k + a)) by lia. replace (2 * k + 2 + a)%nat with (S (S (2 * k + a))) by lia. cbn [pow].
+    specialize (Ft (2 * k + a)%nat). field. repeat split; try (apply not_0_INR; lia); lra. }
+  assert (Sq0 : (0 <= r * r / unit)%Z) by (apply Z.div_pos; nia).
+  assert (Sq : 0 <= IZR unit * (x * x) - IZR (r * r / unit) < 1).
+  { assert (F := floor_le (r * r) unit Pu). assert (G := floor_gt (r * r) unit Pu). rewrite mult_IZR in F, G.
+    replace (IZR unit * (x * x)) with (IZR r * IZR r / IZR unit) by (unfold x; field; lra). lra. }
+  assert (Nn : forall k, (0 <= wave_term a r unit k)%Z).
+  { induction k as [|k IH]; [cbn; destruct a; lia|]. cbn [wave_term]. apply Z.div_pos; [apply Z.div_pos; [nia|lia]|nia]. }
+  set (e := fun k => t k - IZR (wave_term a r unit k)).
+  assert (Step : forall k, IZR (wave_term a r unit (S k)) <= IZR (wave_term a r unit k) * (IZR (r * r / unit) / IZR unit) / c k < IZR (wave_term a r unit (S k)) + 1).
+  { intro k. cbn [wave_term]. rewrite Z.div_div by nia. unfold c. rewrite INR_IZR_INZ. set (m := Z.of_nat ((2 * k + 1 + a) * (2 * k + 2 + a))).
+    assert (Pm : (0 < m)%Z) by (unfold m; nia). assert (Pm' : 0 < IZR m) by (apply (IZR_lt 0); trivial).
+    replace (IZR (wave_term a r unit k) * (IZR (r * r / unit) / IZR unit) / IZR m) with (IZR (wave_term a r unit k * (r * r / unit)) / IZR (unit * m)).
+    - split; [apply floor_le; nia|apply floor_gt; nia].
+    - rewrite !mult_IZR. field. split; lra. }
+  assert (E0 : e O = 0).
+  { unfold e, t. destruct a as [|[|a]]; [| |lia]; cbn; unfold x; field; lra. }
+  assert (Ek : forall k, 0 <= e k -> 0 <= e (S k) < (e k * (x * x) + 1) / c k + 1).
+  { intros k P. destruct (Step k) as [S1 S2]. specialize (Hc k). assert (Pc : 0 < c k) by lra. assert (Ic : 0 < / c k) by now apply Rinv_0_lt_compat.
+    assert (T0 : 0 <= IZR (wave_term a r unit k)) by (apply (IZR_le 0), Nn). assert (T1 := Tp k).
+    set (T := IZR (wave_term a r unit k)) in *. set (s := IZR (r * r / unit) / IZR unit) in *.
+    assert (Hs : 0 <= x * x - s /\ (x * x - s) * IZR unit < 1).
+    { assert (Es : (x * x - s) * IZR unit = IZR unit * (x * x) - IZR (r * r / unit)) by (unfold s; field; lra).
+      split; [apply (Rmult_le_reg_r (IZR unit)); trivial; lra|lra]. }
+    assert (Hs0 : 0 <= s) by (unfold s; apply Rmult_le_pos; [now apply (IZR_le 0)|left; now apply Rinv_0_lt_compat]).
+    change (e (S k)) with (t (S k) - IZR (wave_term a r unit (S k))). rewrite Tn. assert (Et : e k = t k - T) by reflexivity.
+    assert (A : 0 <= t k * (x * x) - T * s <= e k * (x * x) + 1).
+    { rewrite Et in *. assert (T * (x * x - s) <= IZR unit * (x * x - s)) by (apply Rmult_le_compat_r; lra). split; [nra|nra]. }
+    assert (D : t k * (x * x) / c k - T * s / c k = (t k * (x * x) - T * s) / c k) by (field; lra).
+    assert (B1 : 0 <= (t k * (x * x) - T * s) / c k) by (apply Rmult_le_pos; lra).
+    assert (B2 : (t k * (x * x) - T * s) / c k <= (e k * (x * x) + 1) / c k) by (apply Rmult_le_compat_r; lra). lra. }
+  assert (Small : forall k, 0 <= e k <= 3 / 2).
+  { assert (Two : 0 <= e 1%nat <= 3 / 2).
+    { destruct (Ek O ltac:(lra)) as [P H]. split; [exact P|]. rewrite E0 in H. specialize (Hc O).
+      assert ((0 * (x * x) + 1) / c O <= / 2); [|lra]. rewrite Rmult_0_l, Rplus_0_l. unfold Rdiv. rewrite Rmult_1_l. apply Rinv_le_contravar; lra. }
+    intro k. destruct k as [|k]; [lra|]. induction k as [|k IH]; [exact Two|].
+    destruct (Ek (S k) (proj1 IH)) as [P H]. split; [exact P|]. specialize (Hc' k).
+    assert ((e (S k) * (x * x) + 1) / c (S k) <= / 2); [|lra].
+    apply (Rmult_le_reg_r (c (S k))); [lra|]. unfold Rdiv. rewrite Rmult_assoc, Rinv_l, Rmult_1_r by lra.
+    assert (x * x <= 16 / 25) by nra. nra. }
+  assert (Al := alternating_losses e (3 / 2) n Small E0).
+  assert (Wb := wave_bounds a x n Ha Hx Hn). cbv zeta in Wb.
+  set (f := match a with O => cos x | _ => sin x end) in *.
+  assert (Pt : forall m, IZR unit * sum (S m) (fun k => alternate k * (x ^ (2 * k + a) / INR (fact (2 * k + a)))) = sum (S m) (fun k => alternate k * t k)).
+  { intro m. rewrite <- sum_scale. apply sum_ext. intros; unfold t; ring. }
+  assert (Up : f * IZR unit <= sum (S (2 * n)) (fun k => alternate k * t k)).
+  { rewrite <- Pt, Rmult_comm. apply Rmult_le_compat_l; lra. }
+  assert (Dn : sum (S (2 * n)) (fun k => alternate k * t k) - t (S (2 * n)) <= f * IZR unit).
+  { replace (sum (S (2 * n)) (fun k => alternate k * t k) - t (S (2 * n))) with (sum (S (2 * n + 1)) (fun k => alternate k * t k)).
+    - rewrite <- Pt, Rmult_comm. apply Rmult_le_compat_r; lra.
+    - replace (2 * n + 1)%nat with (S (2 * n)) by lia. change (sum (S (S (2 * n))) (fun k => alternate k * t k)) with (sum (S (2 * n)) (fun k => alternate k * t k) + alternate (S (2 * n)) * t (S (2 * n))).
+      assert (E1 : alternate (S (2 * n)) = -1) by (unfold alternate; rewrite Nat.even_succ, <- Nat.negb_even, Nat.even_mul; reflexivity). rewrite E1. ring. }
+  assert (Tl : t (S (2 * n)) <= 3 / 2).
+  { assert (e (2 * n)%nat = t (2 * n)%nat) by (unfold e; rewrite Z0; ring). assert (B := Small (2 * n)%nat). rewrite Tn. specialize (Hc (2 * n)%nat).
+    apply (Rmult_le_reg_r (c (2 * n)%nat)); [lra|]. unfold Rdiv. rewrite Rmult_assoc, Rinv_l, Rmult_1_r by lra. assert (x * x <= 16 / 25) by nra. nra. }
+  assert (Sp : sum (S (2 * n)) (fun k => alternate k * t k) = total + sum (S (2 * n)) (fun k => alternate k * e k)).
+  { unfold total. rewrite <- sum_plus. apply sum_ext. intros; unfold e; ring. }
+  replace (INR (2 * n)) with (2 * INR n) by (rewrite mult_INR; cbn; ring).
+  apply Rabs_le. lra.
+Qed.

@@ -26,6 +26,24 @@ Proof.
     destruct (Rle_dec 0 (l s k)), (Rcase_abs (l s k)); lra.
 Qed.
 
+(* (1b) Likewise with the Euclidean length, σ_s = √(Σ L_sk²). *)
+Theorem ball_reaches_euclidean (n : nat) (l v : matrix) (s : nat) (r : R) : left_inverse n n l v -> left_inverse n n v l ->
+  (s < n)%nat -> 0 <= r -> exists e, norm n (euclidean n) v e <= r /\ e s = r * sqrt (sum n (fun k => l s k * l s k)).
+Proof.
+  intros E E' Hs Hr. set (q := sqrt (sum n (fun k => l s k * l s k))).
+  assert (Q : q * q = sum n (fun k => l s k * l s k)) by (apply sqrt_sqrt, sum_nonneg; intros; nra).
+  assert (P : 0 <= q) by apply sqrt_pos. destruct (Req_dec q 0) as [Z|Z].
+  - exists (times n l (fun _ => 0)). rewrite Z, Rmult_0_r. split; [|apply sum_zero; intros; ring].
+    unfold norm. rewrite (supported_ext n (euclidean n) _ (fun _ => 0) (euclidean_supported n)).
+    + unfold euclidean, dot. rewrite sum_zero by (intros; ring). rewrite sqrt_0. exact Hr.
+    + intros i Hi. now apply (recovered n n v l).
+  - set (y := fun k => r / q * l s k). exists (times n l y). split.
+    + unfold norm. rewrite (supported_ext n (euclidean n) _ y (euclidean_supported n)) by (intros i Hi; now apply (recovered n n v l)).
+      unfold euclidean, dot, y. rewrite (sum_ext n _ (fun k => r / q * (r / q) * (l s k * l s k))) by (intros; ring).
+      rewrite sum_scale, <- Q. replace (r / q * (r / q) * (q * q)) with (r * r) by (field; exact Z). rewrite sqrt_square; lra.
+    + unfold times, y. rewrite (sum_ext n _ (fun k => r / q * (l s k * l s k))) by (intros; ring). rewrite sum_scale, <- Q. field. exact Z.
+Qed.
+
 (* (2), stances (2): ‖V_t J L_s‖ <= k on the way from the target to x, and misses of m and movements of d: gain k, residual m + d. *)
 Theorem step_pair (n m m' : nat) (len len' : vector -> R) (v v' : matrix) (f : vector -> vector) (js : matrix -> Prop)
   (k miss d : R) (x before after after' : vector) : supported m' len' ->
