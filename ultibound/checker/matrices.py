@@ -22,7 +22,6 @@ KINDS = ("box", "polytope", "ellipsoid")
 MOST_STATES = 6
 MOST_ROWS = 64
 MOST_SLOPES = 8  # whose signs are told apart; further ones count as rest
-FEWER = (0, 2, 4)  # slopes kept where that is enough: each more doubles the corners
 LONGEST = 4000  # bits of a matrix's whole numbers, and of the denominator they share
 ROOT_BITS = 72  # of a rounded square root
 ENTRY_BITS = 160  # of an entry, rounded outward
@@ -160,13 +159,6 @@ class Image:
         rest = [[-(-(x << bits) // self.unit) + 1 + len(slopes) for x in row] for row in self.rest]
         return Image(centre, slopes, rest, 1 << bits)
 
-    def keeping(self, count: int) -> Image:
-        """One that contains it, all but so many of the largest slopes given up: proofs/matrix.md (2d)."""
-        rest = self.rest
-        for g in self.slopes[count:]:
-            rest = added(rest, g)
-        return Image(self.centre, self.slopes[:count], rest, self.unit)
-
     def rows(self) -> Iterator[int]:
         """Upper bounds of the rows' sums of magnitudes, in units: proofs/matrix.md (2)."""
         for i, row in enumerate(self.centre):
@@ -191,8 +183,8 @@ def norm_at_most(metric: Metric, leaf: Leaf, bound: Fraction) -> bool:
     found = seen(metric, leaf)
     if metric.kind != "ellipsoid":
         return max(found.rows()) <= bound * found.unit
-    some = [found.keeping(k) for k in FEWER if k < len(found.slopes)]
-    return any(all(within(g, x.unit, bound - x.spread()) for g in x.grams()) for x in [*some, found])
+    room = bound - found.spread()
+    return all(within(g, found.unit, room) for g in found.grams())
 
 
 def norm_over(
@@ -202,8 +194,6 @@ def norm_over(
 
     `start` itself if it will do, so that one call a leaf, each from what the last one gave, bounds all of them.
     """
-    if metric.kind == "ellipsoid" and norm_at_most(metric, leaf, start):
-        return start
     found = seen(metric, leaf)
     if metric.kind != "ellipsoid":
         return max(start, Fraction(max(found.rows()), found.unit))
