@@ -99,7 +99,7 @@ def test_a_certificate_of_another_map_names_the_line(tmp_path: Path, certificate
 
 @pytest.mark.parametrize("arguments", [
     ["prove", "--set", "kappa"], ["prove", "--set", "kappa=1_0"], ["prove", "--set", "nope=1"], ["prove", "--set", "kappa=v"],
-    ["prove", "--gain-interval", "kappa"],
+    ["prove", "--gain-interval", "kapa"], ["prove", "--gain-interval", "z"],
 ])  # fmt: skip
 def test_unusable_options_exit_2(arguments: list[str], tmp_path: Path) -> None:
     done = run_here(*arguments, EXAMPLES / "pendulum.toml", "-o", tmp_path / "x.json")

@@ -12,7 +12,7 @@ import ultibound.checker
 from tests.checker.test_boundaries import GONE, Case, Draft, Entries, Question, but, claim, moved, sealed
 
 CASES: dict[str, Question] = {}
-NONE: dict[str, Any] = {"inner": None, "outer": [None, None], "contracting": None, "best": None}
+NONE: dict[str, Any] = {"inner": None, "set": None, "outer": [None, None], "contracting": None, "best": None}
 
 
 def accept(name: str, entries: Entries) -> None:
@@ -72,9 +72,11 @@ def pieces() -> None:
     breaking(d, 4, "5/2", "3/4", "-7/8")
     first, second, third, fourth = 7, 15, 23, 32  # ranks of the lines that state a piece
     good = d.entries("region", [("gain <= 0.75", "proved")])
-    interval = {**NONE, "gain": "kappa", "inner": ["1/2", "7/3"], "outer": ["1/4", "5/2"]}
+    interval = {**NONE, "gain": "kappa", "inner": ["1/2", "7/3"], "set": "region", "outer": ["1/4", "5/2"]}
     good["results"]["gain_intervals"] = [interval]
     accept("pieces", good)
+    for kind in (None, "ball", "smaller ball"):
+        reject(f"pieces about {kind}", but(good, "results gain_intervals 0 set", kind), "results", f"results.gain_intervals.set: {kind!r} is claimed, 'region' was derived")
     at = "results gain_intervals 0"
     for name, path, value in (("less", "inner", ["3/4", "2"]), ("a point", "inner", ["1/2", "1/2"]), ("nothing", "inner", None), ("outer unsaid", "outer", [None, None]), ("lower unsaid", "outer", [None, "5/2"]), ("upper unsaid", "outer", ["1/4", None])):
         accept(f"pieces, {name}", but(good, f"{at} {path}", value))
@@ -91,7 +93,7 @@ def pieces() -> None:
     reject("another gain", but(good, f"{at} gain", "other"), "results", "results.gain_intervals.gain: 'other' is claimed, 'kappa' was derived")
     for name, value in (("none", []), ("two", [interval, interval]), ("no list", {"0": interval})):
         reject(f"intervals: {name}", but(good, "results gain_intervals", value), "results", "results.gain_intervals: one entry a gain that pieces are about")
-    reject("interval, a key less", but(good, f"{at} best", GONE), "results", "results.gain_intervals: the keys are gain, inner, outer, contracting, best")
+    reject("interval, a key less", but(good, f"{at} best", GONE), "results", "results.gain_intervals: the keys are gain, inner, set, outer, contracting, best")
     # the pieces themselves
     nearer = f"{at} inner", ["1/2", "1"]
     for upper, fits in (("1", True), (moved("1", 1), True), (moved("1", -1), False), ("7/3", True), ("1/2", False)):
@@ -141,7 +143,7 @@ def pieces() -> None:
         outer[side] = "1/4"
         reject(f"no outer gains, one claimed at {side}", but(only, f"{at} outer", outer), "results", "results.gain_intervals.outer: no requirement")
     alone = [*good["proof"][:first], *[but(x, "uses", [n - third + first for n in x["uses"]]) for x in good["proof"][third:fourth]]]
-    reject("refuted gains without a piece", but(good, "proof", alone, f"{at} inner", None, f"{at} outer", [None, None]), "proof", "line 8 serves no later line")
+    reject("refuted gains without a piece", but(good, "proof", alone, f"{at} inner", None, f"{at} set", None, f"{at} outer", [None, None]), "proof", "line 8 serves no later line")
     folded = claim(STEP, "[-1, 1]", 'w = ["-kappa/8", "1/8"]\np = ["1/2", "3/4"]', requires=["gain <= 0.75"], rest=GAINS)
     reject("a gain that sets a range", but(good, "claim text", folded), f"proof line {first + 2}", "kappa also sets an exponent, the end of a range")
     folded = claim(STEP.replace("p*kappa", "p*kappa*v**(2*kappa - 2)"), "[-1, 1]", UNCERTAIN, requires=["gain <= 0.75"], rest=GAINS)

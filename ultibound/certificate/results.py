@@ -53,6 +53,7 @@ def interval(found: Interval) -> dict[str, Any]:
     return {
         "gain": found.gain,
         "inner": inward(found.inner),
+        "set": found.set,
         "outer": outer,
         "contracting": inward(found.contracting),
         "best": best,

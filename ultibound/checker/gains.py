@@ -21,14 +21,19 @@ if TYPE_CHECKING:
     from .rules import Proof
 
 Ends = tuple[Fraction, Fraction]
+SETS = (None, "region", "ball", "smaller ball")  # each says less of single gains than the one before
 
 
 @dataclass(frozen=True)
 class Interval:
-    """Of a gain: where every requirement is proved, the nearest gains that break one, and where it contracts."""
+    """Of a gain: where every requirement is proved, the nearest gains that break one, and where it contracts.
+
+    `set`: what kind of set `inner` is about: the region, or for some of its pieces a ball.
+    """
 
     gain: str
     inner: Ends | None
+    set: str | None
     outer: tuple[Fraction | None, Fraction | None]
     contracting: Ends | None
     best: Ends | None  # a gain, and the k it has
@@ -111,7 +116,8 @@ def of_gain(
     needed: set[int],
 ) -> Interval:
     proved: list[Ends] = []
-    broken: dict[Fraction, set[int]] = {}
+    kinds: set[str | None] = set()
+    broken: dict[Fraction, tuple[str | None, set[int]]] = {}
     contracting: Line | None = None
     for number, variant, piece in pieces:
         wanted = "sensitivity-gain", f"sensitivity-gain[{gain}]", variant
@@ -126,17 +132,22 @@ def of_gain(
         verdicts = {x.verdict for x in results.requirements}
         if verdicts == {"proved"}:
             proved.append((piece.lower, piece.upper))
+            kinds.add(results.kind)
             needed.update((number, *results.needed))
         elif "refuted" in verdicts and piece.lower == piece.upper:
-            broken[piece.lower] = {number, *results.needed}
+            broken[piece.lower] = results.kind, {number, *results.needed}
         else:
             raise Rejected(f"gains[{variant.piece}]: neither is every requirement proved nor a single gain refuted")
     inner = joined(gain, proved)
-    outer = around(inner, broken, needed)
+    kind = max(kinds, key=SETS.index, default=None)
+    # what fails on all of a region says nothing of a ball in it: proofs/sensitivity-gain.md (3)
+    alike = {x: lines for x, (on, lines) in broken.items() if kind in SETS[:2] or on != "region"}
+    outer = around(inner, alike, needed)
     found = None if contracting is None else contracting.concludes
     return Interval(
         gain,
         inner,
+        kind,
         outer,
         None if found is None else (found["lower"], found["upper"]),
         None if found is None else (found["best"], found["gain"]),

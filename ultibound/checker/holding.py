@@ -114,8 +114,9 @@ def gain_intervals(results: Results, claimed: Any) -> None:
     if not isinstance(claimed, list) or len(claimed) != len(results.intervals):
         raise Rejected(f"{place}: one entry a gain that pieces are about")
     for entry, found in zip(claimed, results.intervals, strict=True):
-        keys(entry, place, "gain inner outer contracting best")
+        keys(entry, place, "gain inner set outer contracting best")
         same(entry["gain"], found.gain, f"{place}.gain")
+        same(entry["set"], found.set, f"{place}.set")
         within(entry["inner"], found.inner, f"{place}.inner")
         within(entry["contracting"], found.contracting, f"{place}.contracting")
         outer = [pair_end(x, f"{place}.outer") for x in two(entry["outer"], f"{place}.outer")]

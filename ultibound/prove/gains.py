@@ -194,7 +194,10 @@ class Interval:
         return self._verdicts(low, high) == {"proved"}
 
     def _breaks(self, x: Fraction) -> bool:
-        return "refuted" in self._verdicts(x, x)
+        """Whether a requirement is refuted there, on a set as the pieces have it."""
+        found, kinds = self._attempt(x, x), {a.results.kind for p in self.pieces if (a := self.known[p]) is not None}
+        alike = found is not None and (kinds <= {None, "region"} or found.results.kind != "region")
+        return alike and "refuted" in self._verdicts(x, x)
 
     def _verdicts(self, low: Fraction, high: Fraction) -> set[str]:
         found = self._attempt(low, high)

@@ -24,7 +24,7 @@ def gain_intervals(results: dict[str, Any]) -> list[GainInterval]:
     return [
         GainInterval(
             one["gain"],
-            between("from", one["inner"], "to"),
+            between("from", one["inner"], "to") + (f", on the {one['set']}" if one["set"] is not None else ""),
             _broken(one["outer"]),
             between("strictly between", one["contracting"], "and"),
             "" if one["best"] is None else f"k ≤ {_up(one['best']['gain'])} at about {_up(one['best']['value'])}",

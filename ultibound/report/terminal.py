@@ -136,7 +136,8 @@ def _gains(intervals: list[dict[str, Any]]) -> list[RenderableType]:
         if x["inner"] is None:
             table.add_row("every requirement is proved", "none", "none", "no gain was found for which they are")
         else:
-            table.add_row("every requirement is proved", *map(_gain, x["inner"]), "for every gain between")
+            where = f", on the {x['set']}" if x["set"] is not None else ""
+            table.add_row("every requirement is proved", *map(_gain, x["inner"]), f"for every gain between{where}")
             table.add_row("one is refuted", *map(_gain, x["outer"]), "at these nearest gains")
         if x["contracting"] is not None:
             table.add_row("contracting", *map(_gain, x["contracting"]), "every gain strictly between")
