@@ -209,7 +209,7 @@ def coefficients() -> None:
                 continue  # the square of the opposite polynomial is the same
             seen.add(f"{path} {new}")
             reject(f"coefficients of {name}: {path.removeprefix(WITNESS)} {new}", but(entries, path, new), f"proof line {AT}", reason)
-        for end in set(piece) - {"polynomial"}:
+        for end in sorted(set(piece) - {"polynomial"}):
             squares: Any = piece[end]["squares"]  # type: ignore[index]  # of an end
             for n in range(len(squares)):
                 reject(f"coefficients of {name}: {end} without {n}", but(entries, f"{WITNESS} pieces 0 {end} squares {n}", GONE), f"proof line {AT}", OTHER)
