@@ -290,6 +290,11 @@ EQUIVALENT: dict[Key, str] = {
     ("matrices", "definite", "(pivot * x - first * y) // before", "-(-(pivot * x - first * y) // before)"):
         "every division is exact: what is divided is a minor times the pivot before (proofs/matrix.md (4))",
     ("matrices", "whole", "unit // x.denominator", "-(-unit // x.denominator)"): "a common multiple of all denominators",
+    ("attracting", "polytope", "comb(len(rows), states) * 2 ** states > MOST", "comb(len(rows), states) * 2 ** states >= MOST"):
+        "of two to six states and up to 64 rows there are never exactly so many choices",
+    ("attracting", "inverted", "(pivot[k] * x - row[k] * y) // before", "-(-(pivot[k] * x - row[k] * y) // before)"):
+        "every division is exact, as in matrices.definite (proofs/polytope.md, Numbers)",
+    ("attracting", "inverted", "before > 0", "before >= 0"): "the last pivot is not 0",
     ("polynomials", "Expansion.corner", "side > 0", "side >= 0"): "a side is 1 or -1",
     ("polynomials", "Expansion.corner", "side > 0", "side >= 0 (2)"): "a side is 1 or -1",
     ("polynomials", "Expansion.reading.partial", "len(values) // 2", "-(-len(values) // 2)"): "a cell has an even number of corners",

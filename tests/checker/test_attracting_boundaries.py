@@ -131,18 +131,20 @@ def octagons() -> None:
 
 def correlated() -> None:
     want = asked("1/8", "1/12")
-    d = on_region("w*(1/4 - x)", "y/4 + q", "1/2", "1/8", [("-3/8", "5/8"), ("-5/16", "5/16")], [that for that, _ in want], noise='w = [0, "1/2"]\nq = ["-1/16", "1/16"]')
-    for n in (7, 8):
-        d.proof[n]["witness"] = {"bits": 0, "trees": ["d"]}
-    drawn(d, [7, 11], ["0", "-1/12"], ["1/8", "1/12"], "1/8", "1/12", trees=("c",))
-    good = d.found("region", want, PLAIN)
-    accept("under the same values", good)
-    by_hair("under the same values", good, 12, "low", 1)
-    by_hair("under the same values", good, 12, "high", -1)
-    reject("under values of their own", but(good, "proof 11 witness trees", ["d"]), "proof line 12", LED)
-    for n, trees in enumerate((["c", "c"], [], ["0 c c"], "c", ["m"], [1])):
-        entries = but(good, "proof 11 witness trees", trees)
-        accept(f"trees, {n}", entries) if n == 2 else reject(f"trees, {n}", entries, "proof line 12", "")
+    for sign, low, high, images in (("", "0", "1/8", ("-3/8", "5/8")), ("-", "-1/8", "0", ("-5/8", "3/8"))):
+        name = f"under the same values, {low} to {high}"
+        d = on_region(f"w*({sign}1/4 - x)", "y/4 + q", "1/2", "1/8", [images, ("-5/16", "5/16")], [that for that, _ in want], noise='w = [0, "1/2"]\nq = ["-1/16", "1/16"]')
+        drawn(d, [7, 11], [low, "-1/12"], [high, "1/12"], "1/8", "1/12", trees=("c",))
+        good = d.found("region", want, PLAIN)
+        accept(name, good)
+        by_hair(name, good, 12, "low", 1)
+        by_hair(name, good, 12, "high", -1)
+        reject(f"{name}: x", but(good, "proof 11 concludes x", hair("1/8", -1)), "proof line 12", "x: less than the polytope reaches")
+        reject(f"{name}: values of their own", but(good, "proof 11 witness trees", ["d"]), "proof line 12", LED)
+        for n, trees in enumerate((["c", "c"], [], ["0 c c"], "c", ["m"], [1])):
+            entries = but(good, "proof 11 witness trees", trees)
+            accept(f"{name}: trees, {n}", entries) if n == 2 else reject(f"{name}: trees, {n}", entries, "proof line 12", "")
+        CASES[f"{name}: leaves"] = Case(sealed(but(good, "proof 11 witness trees", ["0 c c"])), "valid", leaves=8)
 
 
 # targets of x that move: h/8 with |h⁺ − h| <= 1/2
@@ -167,6 +169,10 @@ def moving() -> None:
     accept("as targets move", good)
     by_hair("as targets move", good, 13, "low", 1)
     by_hair("as targets move", good, 13, "high", -1)
+    turned = but(good, "proof 12 witness rows", [["-1", "0"], ["0", "1"]])
+    accept("as targets move, a row turned", turned)
+    by_hair("as targets move, a row turned", turned, 13, "low", 1)
+    by_hair("as targets move, a row turned", turned, 13, "high", -1)
     reject("as if targets stood still", but(good, "proof 12 uses", [7, 12]), "proof line 13", RESTS)
     # from targets 1/8 to either side of 0, the ends of the region are 7/8 away
     for end, inside in (("7/8", True), (hair("7/8", 1), False)):
