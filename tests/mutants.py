@@ -302,6 +302,8 @@ EQUIVALENT: dict[Key, str] = {
     ("polynomials", "size", "m - n", "m + n"): "a binomial of the other half of its symmetric row",
     ("polynomials", "size", *(f"turned.get(to, Fraction(0)) {sign} c * Fraction(comb(m, (m - n) // 2) * (2 if n else 1), 2 ** m)" for sign in "+-")):
         "all coefficients are turned alike, and magnitudes are taken",
+    **{("gains", "around", f"x {a} {end}", f"x {a}= {end}"): "a refuted gain at an end of the proved ones is refused before"
+       for a, end in (("<", "inner[0]"), (">", "inner[1]"))},
     ("tables", "read_library", "set(axes) <= set(header)", "set(axes) < set(header)"):
         "where the axes are all columns there are, the other half of the condition refuses",
 }  # fmt: skip

@@ -16,6 +16,7 @@ from tests.checker import (
     test_absorbed_boundaries,
     test_attracting_boundaries,
     test_boundaries,
+    test_gains_boundaries,
     test_graph_boundaries,
     test_horizon_boundaries,
     test_matrices,
@@ -52,6 +53,7 @@ NORMS = ("matrices",)
 SEVERAL = ("jacobians", "several", "outcomes", "periodic", "products", "absorbed", "attracting")
 GRAPHS = ("graph", "graph_outcomes")
 SQUARES = ("squares", "polynomials")
+GAINS = ("gains",)
 READING = ("grammar", "numerals", "statement", "tables", "scope", "command")
 SAMPLE, SEED = 10, 20260101
 MOST_EQUIVALENT = 0.05
@@ -64,7 +66,9 @@ def copies() -> Copies:
 
 @pytest.fixture(scope="module")
 def found(copies: Copies) -> dict[str, list[Mutant]]:
-    return {m: mutants(m, copies.source[m]) for m in PROOFS + STANCES + NORMS + SEVERAL + GRAPHS + SQUARES + READING}
+    return {
+        m: mutants(m, copies.source[m]) for m in PROOFS + STANCES + NORMS + SEVERAL + GRAPHS + SQUARES + GAINS + READING
+    }
 
 
 @pytest.fixture(scope="module")
@@ -85,9 +89,12 @@ def batteries(copies: Copies) -> dict[str, Battery]:
     graphs = Battery(test_graph_boundaries.CASES)
     several_cases = {f"several: {n}": q for n, q in test_several_boundaries.CASES.items()}
     graph_cases = {f"graph: {n}": q for n, q in test_graph_boundaries.CASES.items()}
-    proofs = Battery(test_boundaries.CASES | stance_cases | several_cases | graph_cases | horizon_cases | squares_cases)
+    gain_cases = {f"gains: {n}": q for n, q in test_gains_boundaries.CASES.items()}
+    more = several_cases | graph_cases | horizon_cases | squares_cases | gain_cases
+    proofs = Battery(test_boundaries.CASES | stance_cases | more)
     of_norms, of_reading = dict.fromkeys(NORMS, norms), dict.fromkeys(READING, reading)
     of_several = dict.fromkeys(SEVERAL, several) | dict.fromkeys(GRAPHS, graphs)
+    of_several |= dict.fromkeys(GAINS, Battery(test_gains_boundaries.CASES))
     of_several |= dict.fromkeys(SQUARES, Battery(test_squares_boundaries.CASES))
     return dict.fromkeys(PROOFS, proofs) | dict.fromkeys(STANCES, stances) | of_norms | of_several | of_reading
 

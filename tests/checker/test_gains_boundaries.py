@@ -255,6 +255,33 @@ def contracting() -> None:
 contracting()
 
 
+def with_a_stance() -> None:
+    """What has to stay positive throughout a stance, here its duration, has to be shown to on the same set."""
+    running = "[dynamics]\nduration = 1\nstart = { x = 0 }\nrate = { x = 0 }"
+    d = Draft(claim("v - p*f", "[-1, 1]", 'p = ["1/2", "3/4"]', requires=["settles"], top='correction = ["f"]', rest=f'{GAINS}\n[define]\nf = "kappa*v"\n{running}'))
+    d.range("target[v]", "0", "0")
+    d.theorem("smaller-ball", "ball", [1], radius="1")
+    piece(d, 1, "0", "4")
+    d.range("gains[1]:target[v]", "0", "0")
+    d.theorem("smaller-ball", "gains[1]:ball", [4], radius="1")
+    d.range("gains[1]:sector-sensitivity[v]", "-3/4", "-1/2", [5])
+    d.range("gains[1]:sector-factor[v,kappa]", "1", "1", [5])
+    d.range("gains[1]:sector-start[v]", "0", "0")
+    d.range("gains[1]:support[1]", "1", "1", [5])
+    d.theorem("sensitivity-gain", "gains[1]:sensitivity-gain[kappa]", [6, 7, 8, 9], lower="0", upper="8/3", best="8/5", gain="1/5")
+    good = d.entries(None, [("settles", "undecided")])
+    good["results"]["gain_intervals"] = [{**NONE, "gain": "kappa", "contracting": ["0", "8/3"]}]
+    accept("contracting within a stance", good)
+    accept("a stance that barely lasts", but(good, "proof 8 concludes lower", moved("0", 1)))
+    for low in ("0", moved("0", -1)):
+        reject(f"a stance of a duration from {low}", but(good, "proof 8 concludes lower", low), "proof line 10", "the stance is not shown to last")
+    reject("a stance not shown to last", but(good, "proof 9 uses", [6, 7, 8]), "proof line 10", "range sector-start[v], range support[1]")
+    reject("a stance shown to last twice", but(good, "proof 9 uses", [6, 7, 8, 9, 9]), "proof line 10", "range sector-start[v], range support[1]")
+
+
+with_a_stance()
+
+
 def refuses(checker: Any, question: Callable[[], Any], reason: str) -> None:
     try:
         question()
@@ -281,6 +308,35 @@ def gains_around(checker: Any) -> None:
     for x in (Q(3), Q(4), Q(5)):
         refuses(checker, lambda x=x: around((Q(3), Q(5)), {x: {1}}, needed), "both proved and refuted")  # type: ignore[misc]
     assert around((Q(3), Q(5)), {Q(3) - Q(1, 10**30): {8}}, needed)[0] is not None
+
+
+@unit
+def sets_of_pieces(checker: Any) -> None:
+    """`set` is the one that says least; beside a ball, gains that are refuted on a region do not count."""
+    gains, theorems = checker.gains, checker.theorems
+
+    class Found:
+        def __init__(self, kind: str | None, verdict: str) -> None:
+            self.kind, self.needed = kind, {9}
+            self.requirements = [type("Outcome", (), {"verdict": verdict})]
+
+    class Lines:
+        def __init__(self) -> None:
+            self.lines: dict[int, Any] = {}
+
+    def interval(*each: tuple[int, int, str | None, str]) -> Any:
+        found = [Found(kind, verdict) for _, _, kind, verdict in each]
+        pieces = [(n, theorems.Variant(n), theorems.Piece("k", Q(a), Q(b))) for n, (a, b, _, _) in enumerate(each, 1)]
+        return gains.of_gain("k", pieces, Lines(), lambda v: found[v.piece - 1], set())
+
+    for one, other, kind in (("region", "region", "region"), ("region", "ball", "ball"), ("ball", "region", "ball"), ("smaller ball", "ball", "smaller ball")):
+        for broken in ("region", "ball", "smaller ball", None):
+            found = interval((1, 2, one, "proved"), (2, 3, other, "proved"), (0, 0, broken, "refuted"), (4, 4, broken, "refuted"))
+            counts = kind == "region" or broken != "region"
+            assert found.set == kind and found.inner == (1, 3), found
+            assert found.outer == ((0, 4) if counts else (None, None)), (kind, broken, found)
+    assert interval((0, 0, "ball", "refuted")).set is None
+
 
 
 # fmt: on
