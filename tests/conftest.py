@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import gc
 from fractions import Fraction
 from typing import Any
 
@@ -32,6 +33,13 @@ def pytest_terminal_summary(terminalreporter: pytest.TerminalReporter) -> None:
             for table in [text for name, text in report.user_properties if name == "table"]:
                 terminalreporter.section(report.nodeid)
                 terminalreporter.write_line(table)
+
+
+@pytest.fixture(scope="module", autouse=True)
+def objects_that_stay_are_not_gone_through_again() -> None:
+    """What earlier modules keep would make every collection of garbage slow, and limits of time fail for that."""
+    gc.collect()
+    gc.freeze()
 
 
 def proved(text: str, settings: dict[str, str] | None = None, data: dict[str, str] | None = None) -> Certificate:

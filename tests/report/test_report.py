@@ -339,7 +339,7 @@ def test_gain_intervals_are_rounded_inwards_and_say_what_they_are() -> None:
     entry = {"gain": "kappa", "inner": ["0.07964912345", "0.14300798765"], "set": "region", "outer": [None, "0.143046"],
              "contracting": ["1/30", "1/3"], "best": {"value": "1/7", "gain": "0.123456789"}}  # fmt: skip
     (told,) = gain_intervals({"gain_intervals": [entry]})
-    assert told.proved == "from 0.0796492 to 0.143007" and told.refuted == "at 0.143046"
+    assert told.proved == "from 0.0796492 to 0.143007, on the region" and told.refuted == "at 0.143046"
     assert (
         told.contracting == "strictly between 0.0333334 and 0.333333" and told.best == "k ≤ 0.123457 at about 0.142858"
     )
