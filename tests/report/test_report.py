@@ -343,7 +343,7 @@ def test_gain_intervals_are_rounded_inwards_and_say_what_they_are() -> None:
     assert (
         told.contracting == "strictly between 0.0333334 and 0.333333" and told.best == "k ≤ 0.123457 at about 0.142858"
     )
-    none = {**entry, "inner": None, "outer": [None, None], "contracting": None, "best": None}
+    none = {**entry, "inner": None, "set": None, "outer": [None, None], "contracting": None, "best": None}
     (told,) = gain_intervals({"gain_intervals": [none]})
     assert (told.proved, told.refuted, told.contracting, told.best) == ("", "", "", "")
 
