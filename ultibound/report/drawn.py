@@ -128,8 +128,8 @@ def _over_gain(data: Any) -> Figure:
     shown = f"{data.values[0]:.3g} to {data.values[-1]:.3g}"
     what = f"The gain k of a step over the controller gain {data.gain}: {span}, within the {shown} shown."
     caption = (
-        "An estimate from below of the largest slope of the map, at the same seeded points for every value; all else as "
-        "claimed. What is proved at the claim's value is of the route reported, which may have less than this slope."
+        "An estimate from below of the largest slope of the map, at the same seeded points for every value; all else "
+        "as claimed. What is proved at the claim's value is of the route reported, which may have less than this slope."
     )
     if data.inner is not None or data.outer:
         caption += " The interval in which every requirement is proved, and gains at which one is refuted, are proved."
