@@ -211,7 +211,7 @@ def contracting() -> None:
     reject("contracting from below 0", drafted(low=moved("0", -1)), "proof line 9", "is not shown to be above 0")
     # the band: its sign, its ends
     for name, other in (("sensitivity up to 0", {"sensitivity": ("-3/4", "0")}), ("factor from 0", {"factor": ("0", "2")}), ("beyond 0", {"sensitivity": ("-3/4", "1")})):
-        reject(f"band, {name}", drafted(**other, upper="1/2"), "proof line 9", "is not shown to be above 0")  # type: ignore[arg-type]
+        reject(f"band, {name}", drafted(**other, upper="1/2"), "proof line 9", "is not shown to be above 0")  # type: ignore[arg-type]  # pairs of texts by name
     accept("both signs turned", drafted("v + p*f", "-kappa*u*v", sensitivity=("1/2", "3/4"), factor=("-2", "-1")))
     reject("one sign turned", drafted("v + p*f", sensitivity=("1/2", "3/4")), "proof line 9", "is not shown to be above 0")
     for f, factor in (("u*v*kappa", ("1", "2")), ("kappa*(u*v)", ("1", "2")), ("kappa*v*2/u", ("1", "2")), ("kappa*v + v*(u - 1)*kappa", ("1", "2")), ("kappa*v*3 - kappa*v*u", ("1", "2")), ("-(-kappa*u*v)", ("1", "2")), ("kappa*kappa*v/8", ("0", "1/2")), ("-kappa*v*(-u)", ("1", "2"))):
@@ -306,7 +306,7 @@ def gains_around(checker: Any) -> None:
     assert around((Q(3), Q(5)), broken, needed) == (2, 6) and needed == {2, 6}
     assert around((Q(3), Q(5)), {}, needed) == (None, None) and around(None, broken, needed) == (None, None)
     for x in (Q(3), Q(4), Q(5)):
-        refuses(checker, lambda x=x: around((Q(3), Q(5)), {x: {1}}, needed), "both proved and refuted")  # type: ignore[misc]
+        refuses(checker, lambda x=x: around((Q(3), Q(5)), {x: {1}}, needed), "both proved and refuted")  # type: ignore[misc]  # each gain bound at once
     assert around((Q(3), Q(5)), {Q(3) - Q(1, 10**30): {8}}, needed)[0] is not None
 
 
