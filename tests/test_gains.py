@@ -214,3 +214,15 @@ def test_both_sides_take_the_same_factor_out(ball: bool) -> None:
     gates = [(g.op, g.args, g.value if g.op in ("number", "power") else g.name or None) for g in o.graph.gates]
     assert spelled_out(gates, mine.root) == spelled_out(d.terms.all, meaning.root) and mine.by == meaning.by == "v"
     assert [(v.name, v.cells) for v in mine.variables] == [(v.name, v.cells) for v in meaning.variables]
+
+
+def test_the_interval_over_a_box_of_height_and_step_time() -> None:
+    """The same formula over z in [0.85, 0.95], T in [0.35, 0.45], no placement error: both ends are at corners of the box (own
+    computation: the largest tanh(ωT/2)/ω, at z = 0.95, T = 0.45, and the least coth(ωT/2)/ω, at z = 0.85, T = 0.45)."""
+    text = PENDULUM.format(requirements=require("gain < 1")).replace("gap = 1e-9", "gap = 1e-3")
+    text = text.replace("z = 0.9\n", "").replace("T = { range = [0.4, 0.4] }", "z = [0.85, 0.95]\nT = [0.35, 0.45]")
+    _, found = interval(text)
+    low, high = Fraction("0.1925593595658777837"), Fraction("0.45732680474074829194")
+    inner, outer = ends(found["inner"]), ends(found["outer"])
+    assert outer[0] < low < inner[0] < inner[1] < high < outer[1]
+    assert inner[0] - outer[0] <= Fraction(1, 1000) and outer[1] - inner[1] <= Fraction(1, 1000)
