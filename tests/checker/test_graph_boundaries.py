@@ -44,7 +44,7 @@ class Steps(Draft):
     form = "d"
 
     def matrix(self, proves: str, norm: str, uses: Sequence[int]) -> int:
-        return self.line("matrix", proves, uses, {"bits": 0, "trees": [self.form]}, norm=norm)
+        return self.line("matrix", proves, uses, {"bits": 0, "scales": [], "trees": [self.form]}, norm=norm)
 
     def table(self, proves: str, values: dict[str, str], uses: Sequence[int], before: Any = None, after: Any = None) -> int:
         one = {"rows": [["1"]], "inverse": [["1"]]}

@@ -41,10 +41,14 @@ class StepWriter(StanceWriter):
         first, *flow = super().rests(proves, on)
         return [first, self.norm, *flow]
 
-    def seen(self, proves: str, on: int) -> tuple[Metric, Metric]:
-        before, after = super().seen(proves, on)[0], self.proof.lines[self.norm].metric
+    def ends(self, on: int) -> tuple[Metric, Metric]:
+        before, after = super().ends(on)[0], self.proof.lines[self.norm].metric
         if after is None:
             raise ValueError("no metric")
+        return before, after
+
+    def seen(self, proves: str, on: int) -> tuple[Metric, Metric]:
+        before, after = self.ends(on)
         return before, across(before, after, proves)
 
     def _measured(

@@ -14,6 +14,7 @@ import numpy as np
 from ..bounding.evaluate import to_float
 from ..checker.courses import nearest
 from ..checker.derive import Ranged
+from ..checker.inequality import Inequality
 from ..checker.jacobians import Table, inside, middle_and_half, named
 from ..checker.matrices import Leaf, Matrix, Metric, comparison, dot, norm_over, root
 from ..checker.numerals import decimal_down, decimal_up
@@ -22,11 +23,13 @@ from ..checker.products import traced
 from ..checker.reals import Undefined
 from ..checker.rules import Line, place
 from ..checker.several import compared, hull, keyed, middles, movements
+from ..contraction.inequalities import Scales
 from .lines import IRRATIONAL, RATIONAL_CELLS, RATIONAL_TERMS, Writer, downward, growing, upward
 
 DIGITS = 25
 MOST_EXACT = 8  # rows of a comparison solved in rationals
 SLACK = 1e-8
+FAR, FURTHER = 0.2, 10  # shares of what a search found: by which a norm may be larger, and how fast it is tried
 NEARER = 1 - 1e-12
 
 
@@ -121,15 +124,34 @@ class NormWriter(Writer):
         return list(Table(self.derivation, proves, domain, bits, self.flows()).leaves(list(trees)))
 
     def matrix(
-        self, proves: str, trees: Sequence[str], bits: int, on: int, leaves: list[Leaf], near: float = 0.0
-    ) -> int:
+        self, proves: str, trees: Sequence[str], bits: int, on: int, leaves: list[Leaf], near: float = 0.0,
+        scales: Scales | None = None,
+    ) -> int:  # fmt: skip
         """The norm of a matrix over the set, as its leaves show it; of an ellipsoid it starts from what it is near."""
+        found = self._inequality(proves, on, leaves, near, scales) if scales is not None and near > 0 else None
+        if found is not None:
+            witness = {"bits": bits, "scales": [[str(x) for x in each] for each in (found.xi, found.eta)]}
+            concludes = {"norm": str(found.bound)}
+            return self._measured("matrix", proves, on, witness | {"trees": list(trees)}, concludes, None)
         _, norm = self.seen(proves, on)
         most = Fraction(near * (1 - SLACK)) if norm.kind == "ellipsoid" and np.isfinite(near) else Fraction(0)
         for leaf in leaves:
             most = norm_over(norm, leaf, most)
-        witness = {"bits": bits, "trees": list(trees)}
+        witness = {"bits": bits, "scales": [], "trees": list(trees)}
         return self._measured("matrix", proves, on, witness, {"norm": upward(most)}, None)
+
+    def _inequality(self, proves: str, on: int, leaves: list[Leaf], near: float, scales: Scales) -> Inequality | None:
+        """The least inequality tried that holds on all leaves; None where that would be far from what was found."""
+        before, after = self.ends(on)
+        xi, eta = (tuple(Fraction(f"{x:.4g}") for x in each) for each in scales)
+        step = SLACK
+        while step < FAR:
+            bound = Fraction(upward(Fraction(near * (1 + step))))
+            found = Inequality(before if proves.startswith("slopes") else None, after, xi, eta, bound)
+            if all(found.holds(leaf) for leaf in leaves):
+                return found
+            step *= FURTHER
+        return None
 
     def entries(
         self, proves: str, trees: Sequence[str], bits: int, on: int, leaves: list[Leaf], basis: tuple[Matrix, Matrix],
@@ -163,12 +185,16 @@ class NormWriter(Writer):
         """The lines that a matrix rests on: the set, and the flow of the stance where it is met."""
         return [on, *([self.flow] if self.flow is not None and self._moves(proves, on) else [])]
 
-    def seen(self, proves: str, on: int) -> tuple[Metric, Metric]:
-        """The norm of errors, and that of what a matrix makes of them, its inverse that of the first."""
+    def ends(self, on: int) -> tuple[Metric, Metric]:
+        """The norm of errors, and that of what a matrix makes of them."""
         domain = self.domain(on)
         if domain is None or domain.metric is None:
             raise ValueError("no metric")
         return domain.metric, domain.metric
+
+    def seen(self, proves: str, on: int) -> tuple[Metric, Metric]:
+        """The norm of errors, and that of what a matrix makes of them, its inverse that of the first."""
+        return self.ends(on)
 
     def _moves(self, proves: str, on: int) -> bool:
         """Whether a matrix rests on the flow of the stance."""

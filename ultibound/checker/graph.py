@@ -14,7 +14,7 @@ from .jacobians import Table
 from .matrices import Leaf, Matrix, Metric, metric
 from .model import Statement
 from .numerals import Rejected
-from .several import ball, gone_through, hull, matrix, moved, movements, numbers, shown, stated, stretch
+from .several import ball, gone_through, hull, matrix, moved, movements, numbers, scaled, shown, stated, stretch
 from .theorems import Line, Quantities, Variant, parted, require
 
 MOST_STANCES = 16
@@ -136,7 +136,8 @@ def about_step(
         return line
     leaves = gone_through(d, table, proves, flows, witness)
     if rule == "matrix":
-        return replace(line, leaves=shown(seen, leaves, proves, claimed))
+        inequality = scaled(domain.metric, norm, proves, witness, claimed)
+        return replace(line, leaves=shown(seen, inequality, leaves, proves, claimed))
     bases = based(witness["before"], len(d.states)), based(witness["after"], len(d.states))
     rows, inverse = bases[1][0], bases[0][1]
     return replace(line, leaves=entered(leaves, (rows, inverse), proves, claimed), bases=bases)

@@ -6,7 +6,7 @@ from collections.abc import Iterator, Mapping
 from dataclasses import replace
 from fractions import Fraction
 from itertools import pairwise, product
-from math import prod
+from math import lcm, prod
 from typing import Any
 
 from .calculus import Unprovable
@@ -16,10 +16,11 @@ from .flows import Flows
 from .forms import boxes
 from .matrices import Leaf, Matrix
 from .numerals import Rejected
-from .ranges import Box, Ends, Evaluator
+from .ranges import Box, Ends, Evaluator, Interval
 from .reals import Undefined
 
 TABLES = ("slopes", "misses")
+Part = tuple[Fraction, dict[int, Fraction], Fraction]
 
 
 class Table:
@@ -70,29 +71,39 @@ class Table:
         )
         return Leaf(centre, slopes, rest)
 
-    def column(
-        self, e: Evaluator, roots: list[int], box: Box, form: str
-    ) -> list[tuple[Fraction, dict[int, Fraction], Fraction]]:
+    def column(self, e: Evaluator, roots: list[int], box: Box, form: str) -> list[Part]:
         """Middle, slopes times half widths, and the rest of each entry of a column over a box."""
-        jets = e.all_of(box, form == "c")
-        found = []
-        for k in roots:
-            low, high = self.a.ends(e.wanted(jets[k]))
-            found.append(((low + high) / 2, dict[int, Fraction](), (high - low) / 2))
+        halves = [(y - x) / 2 for x, y in box]
+        wide = lcm(*(h.denominator for h in halves))
+        jets, unit = e.all_of(box, form == "c"), 2 * wide * e.one[0]  # how many of what is counted below make 1
+
+        def part(middle: Any, told: dict[int, Any], rest: Any) -> Part:
+            return Fraction(middle, unit), {v: Fraction(x, unit) for v, x in told.items()}, Fraction(rest, unit)
+
+        def counted(ends: Interval) -> tuple[Any, Any]:
+            return (ends[0] + ends[1]) * wide, (ends[1] - ends[0]) * wide
+
+        found = [(x, dict[int, Any](), y) for x, y in (counted(e.wanted(jets[k])) for k in roots)]
         # a derivative that may jump has no other form
         smooth = [i for i, k in enumerate(roots) if form == "c" and not (e.by and e.jumps(self.below[k]))]
-        if not smooth:
-            return found
-        centre = e.all_of([((x + y) / 2,) * 2 for x, y in box], False, part=True)
-        for i in smooth:
-            slopes = {v: self.a.ends(x) for v, x in e.slopes(jets[roots[i]]).items() if x is not None}
-            low, high = self.a.ends(e.wanted(centre[roots[i]]))
-            half = {v: (box[v][1] - box[v][0]) / 2 for v in slopes}
-            rest = (high - low) / 2 + sum(((q - p) / 2 * half[v] for v, (p, q) in slopes.items()), Fraction(0))
-            if rest < found[i][2]:
-                moving = {v: (p + q) / 2 * half[v] for v, (p, q) in slopes.items() if half[v]}
-                found[i] = (low + high) / 2, moving, rest
-        return found
+        slopes = {i: {v: x for v, x in e.slopes(jets[roots[i]]).items() if x is not None and halves[v]} for i in smooth}
+        each = {v: [x[v] for x in slopes.values() if v in x] for x in slopes.values() for v in x}
+        # where slopes vary more than they are large, a variable is better left as wide as it is
+        telling = {v for v, x in each.items() if sum(abs(p + q) for p, q in x) >= sum(q - p for p, q in x)}
+        least = {i: 2 * found[i][2] for i in smooth}
+        for fixed in dict.fromkeys((frozenset(telling), frozenset(each))):
+            middle = [((x + y) / 2,) * 2 if v in fixed else (x, y) for v, (x, y) in enumerate(box)]
+            centre = e.all_of(middle, False, part=True)
+            for i in smooth:
+                x, rest = counted(e.wanted(centre[roots[i]]))
+                told = {}
+                for v in fixed & set(slopes[i]):
+                    (p, q), h = slopes[i][v], int(halves[v] * wide)
+                    told[v], rest = (p + q) * h, rest + (q - p) * h
+                width = 2 * rest + sum(map(abs, told.values()))  # what is told apart costs about half
+                if width < least[i]:
+                    found[i], least[i] = (x, told, rest), width
+        return [part(*x) for x in found]
 
     def at(self, at: Any) -> list[list[Ends]]:
         """All entries at a point of the set."""

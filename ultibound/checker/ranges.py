@@ -22,7 +22,10 @@ Box = list[Ends]
 Interval = Any  # a pair of whole numbers (Scaled) or of fractions (Exact)
 Arithmetic = Any  # Scaled or Exact
 RATIONAL = frozenset(["number", "variable", "mark", "neg", "add", "sub", "mul", "div", "power", "abs", "min", "max"])
+REMEMBERED = 300  # boxes of some of the variables
 SMOOTH = frozenset(["sqrt", "exp", "log", "sin", "cos", "tan", "asin", "acos", "atan", "sinh", "cosh", "tanh"])
+
+PLAIN = (RATIONAL | SMOOTH) - {"abs", "min", "max"}  # what is found there depends on nothing but the box
 
 
 class Trajectory(Protocol):
@@ -48,6 +51,9 @@ class Jet:
         self.dg: dict[int, Interval] = {}
 
 
+Known = dict[tuple[Any, ...], dict[int, Jet]]
+
+
 class Evaluator:
     """A term, or its derivative by a marked name, over boxes of named variables."""
 
@@ -69,7 +75,9 @@ class Evaluator:
         self.zero, self.one = arithmetic.number(Fraction(0)), arithmetic.number(Fraction(1))
         self.nodes: dict[tuple[str, int], Interval] = {}
         self.fixed: dict[int, Jet] = {}
-        self.moving: list[int] = []
+        self.moving: list[int] = []  # that are evaluated over every box
+        self.groups: dict[frozenset[int], tuple[list[int], Known]] = {}  # by their variables: what is remembered
+        self.met: dict[Ends, int] = {}
         self.several = False
         self.direction: int | None = None  # a variable by which d is taken instead of the marked name
         self.branch: dict[int, list[range]] = {}
@@ -85,6 +93,7 @@ class Evaluator:
                 self.moving.append(k)
             else:
                 self.fixed[k] = self.term(k, self.fixed, [], False)
+        self.grouped()
 
     def run(self, box: Box, gradient: bool, part: bool = False, touching: bool = False) -> Jet:
         """The root's jet over a box; `several` tells whether a reading met more than one cell, `sides` which branches
@@ -102,9 +111,47 @@ class Evaluator:
         if not (part and self.second()):
             self.branch = {}
         jets = dict(self.fixed)
+        if self.groups:
+            self.remembered(jets, box, gradient)
         for k in self.moving:
             jets[k] = self.term(k, jets, box, gradient)
         return jets
+
+    def grouped(self) -> None:
+        """Smooth terms of some, not all, of the variables apart: in a tree these often have the same ranges again."""
+        groups: dict[frozenset[int], list[int]] = {}
+        reads: dict[int, frozenset[int]] = dict.fromkeys(self.fixed, frozenset())
+        for k in self.moving:
+            op, args, payload = self.all[k]
+            if op == "variable":
+                reads[k] = frozenset([self.names.index(str(payload))])
+            elif op in PLAIN and all(x in reads for x in args):
+                reads[k] = frozenset().union(*(reads[x] for x in args))
+            if k in reads:
+                groups.setdefault(reads[k], []).append(k)
+        every = frozenset[int]().union(*groups)
+        # a term rests on terms of no more variables than its own, of as many only if they are the same
+        self.groups = {x: (groups[x], {}) for x in sorted(groups, key=len) if x != every}
+        apart = {k for terms, _ in self.groups.values() for k in terms}
+        self.moving = [k for k in self.moving if k not in apart]
+
+    def remembered(self, jets: dict[int, Jet], box: Box, gradient: bool) -> None:
+        """The jets of terms that are grouped; those found before where all of their variables had the same ends."""
+        if len(self.met) > REMEMBERED:
+            self.met = {}
+            for _, known in self.groups.values():
+                known.clear()
+        ends = [self.met.setdefault(x, len(self.met)) for x in box]
+        for variables, (terms, known) in self.groups.items():
+            key = gradient, self.direction, *(ends[i] for i in variables)
+            if key in known:
+                jets.update(known[key])
+                continue
+            for k in terms:
+                jets[k] = self.term(k, jets, box, gradient)
+            if len(known) > REMEMBERED:
+                known.clear()
+            known[key] = {k: jets[k] for k in terms}
 
     def jumps(self, below: Collection[int]) -> bool:
         """Whether among these terms, in the last run, a corner met both branches or a reading several cells."""

@@ -45,7 +45,7 @@ SHAPES: dict[str, tuple[tuple[str, ...], tuple[str, ...] | None]] = {
     "path": (("bits", "held", "start", "steps"), ("distance", "from", "steps")),
     "ultimate-bound": ((), ("bound",)),
     "metric": (("inverse", "kind", "rows"), ()),
-    "matrix": (("bits", "trees"), ("norm",)),
+    "matrix": (("bits", "scales", "trees"), ("norm",)),
     "entries": (("beside", "bits", "inverse", "rows", "trees"), None),  # two an entry
     "stretch": (("at", "bits", "direction"), ("lower",)),
     "componentwise": (("about", "b", "p"), None),  # one a state

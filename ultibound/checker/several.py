@@ -11,6 +11,7 @@ from .absorbed import absorbed
 from .derive import Derivation, Domain
 from .flows import Flows
 from .grammar import constant
+from .inequality import Inequality
 from .jacobians import Table, middle_and_half
 from .matrices import (
     ENTRY_BITS,
@@ -162,17 +163,31 @@ def bounded(
     domain, norm = of_set(used)
     leaves = gone_through(d, Table(d, proves, domain, witness["bits"], flows), proves, flows, witness)
     if rule == "matrix":
-        return domain, shown(norm, leaves, proves, claimed), None
+        return domain, shown(norm, scaled(norm, norm, proves, witness, claimed), leaves, proves, claimed), None
     basis = based(d, witness)
     return domain, entered(leaves, basis, proves, claimed, apart(basis, proves, witness["beside"])), basis
 
 
-def shown(norm: Metric, leaves: Iterable[Leaf], proves: str, claimed: Quantities) -> int:
+def scaled(
+    before: Metric, after: Metric, proves: str, witness: dict[str, Any], claimed: Quantities
+) -> Inequality | None:
+    """The inequality that is to hold on every leaf, of ellipsoids by scales; None where there are none."""
+    scales, of_slopes = witness["scales"], proves.startswith("slopes")
+    if scales == []:
+        return None
+    if not isinstance(scales, list) or len(scales) != 2 or {before.kind, after.kind} != {"ellipsoid"}:
+        raise Rejected("scales: none, or of an ellipsoid those of columns and of rows")
+    xi = numbers(scales[0], "scales", len(before.inverse) if of_slopes else 1)
+    eta = numbers(scales[1], "scales", len(after.inverse))
+    return Inequality(before if of_slopes else None, after, tuple(xi), tuple(eta), claimed["norm"])
+
+
+def shown(norm: Metric, inequality: Inequality | None, leaves: Iterable[Leaf], proves: str, claimed: Quantities) -> int:
     """How many leaves there are, every one within the norm that is claimed."""
     count = 0
     for leaf in leaves:
         count += 1
-        if not norm_at_most(norm, leaf, claimed["norm"]):
+        if not (norm_at_most(norm, leaf, claimed["norm"]) if inequality is None else inequality.holds(leaf)):
             raise Rejected(f"{proves}: a leaf is not shown to stay within the norm")
     return count
 

@@ -19,13 +19,16 @@ from ..bounding.evaluate import Runner, to_float
 from ..bounding.intervals import Floats
 from ..bounding.search import SHARE, Effort
 from ..claim.obligations import Obligation, Variable, together
+from .inequalities import Scales, fitted, greatest, plain
 
 BATCH = 64
+BEST = 4  # of so many leaves, the worst is bisected at once
 MOST_SLOPES = 8  # as in the checker: further ones count as rest
 CORNERS = 2_000_000  # numbers of all corners of a batch at once
 FINEST = 2.0**-40  # of a cell, below which no box is bisected
 STALLED = 0.9  # of what is left to the gap: where twice as many leaves leave as much at a jump, it stays
 FIRST_LOOK = 128  # leaves
+REFITTED = 8  # times as many leaves, until the scales of an ellipsoid are chosen anew
 
 
 def floats(m: Sequence[Sequence[Fraction]]) -> Floats:
@@ -49,6 +52,10 @@ class Norm:
     inverse: Floats | None
     round: bool  # Euclidean length, else the largest magnitude
 
+    @property
+    def right(self) -> Floats:
+        return self.inverse if self.inverse is not None else np.eye(1)
+
 
 @dataclass(frozen=True, slots=True)
 class Stretched:
@@ -61,6 +68,7 @@ class Stretched:
     point: dict[str, Fraction]
     direction: tuple[float, ...]
     stopped: str
+    scales: Scales | None = None  # of an ellipsoid whose leaves have a rest: proofs/matrix.md (2e)
 
 
 @dataclass(frozen=True, slots=True)
@@ -94,25 +102,34 @@ class Matrices:
         slopes, lost = np.zeros((boxes, count, *shape[1:])), np.zeros((boxes, count, *shape[1:]))
         jumps = np.zeros(boxes, bool)
         with np.errstate(invalid="ignore", over="ignore"):
-            for i, row in enumerate(self.rows):
-                for j, e in enumerate(row):
-                    run = e.runner(low[:, e.columns], high[:, e.columns])
-                    at = middle[:, e.columns]
-                    here = e.runner(at, at, gradient=False)
+            for j, column in enumerate(zip(*self.rows, strict=True)):
+                runs = [e.runner(low[:, e.columns], high[:, e.columns]) for e in column]
+                linear, left = np.zeros((len(column), *low.shape)), np.zeros((len(column), *low.shape))
+                for i, (e, run) in enumerate(zip(column, runs, strict=True)):
                     r = half[:, e.columns]
-                    linear = (run.gradient_low + run.gradient_high) / 2 * r
-                    left = np.where(r > 0, (run.gradient_high - run.gradient_low) / 2 * r, 0.0)
-                    whole = np.where(r > 0, np.maximum(abs(run.gradient_low), abs(run.gradient_high)) * r, 0.0)
-                    total = left.sum(axis=1) + (here.high - here.low) / 2
-                    direct = (run.high - run.low) / 2 <= total
-                    if e.obligation.by:
-                        direct |= run.split | run.open()
-                        jumps |= run.split | run.open()
-                    direct |= ~np.isfinite(total) | ~np.isfinite(linear).all(axis=1)
-                    centre[:, i, j] = np.where(direct, (run.low + run.high) / 2, (here.low + here.high) / 2)
-                    rest[:, i, j] = np.where(direct, (run.high - run.low) / 2, total)
-                    slopes[:, e.columns, i, j] = np.where(direct[:, None], 0.0, linear)
-                    lost[:, e.columns, i, j] = np.where(direct[:, None], whole, left)
+                    linear[i][:, e.columns] = np.where(r > 0, (run.gradient_low + run.gradient_high) / 2 * r, 0.0)
+                    left[i][:, e.columns] = np.where(r > 0, (run.gradient_high - run.gradient_low) / 2 * r, 0.0)
+                # where slopes vary more than they are large, a variable is better left as wide as it is
+                telling = np.abs(linear).sum(axis=0) >= left.sum(axis=0)
+                about = np.stack([telling, np.ones_like(telling)])
+                ends = [np.where(about, middle, x).reshape(2 * boxes, count) for x in (low, high)]
+                for i, (e, run) in enumerate(zip(column, runs, strict=True)):
+                    still = run.split | run.open() if e.obligation.by else np.zeros(boxes, bool)
+                    jumps |= still
+                    centre[:, i, j], rest[:, i, j] = (run.low + run.high) / 2, (run.high - run.low) / 2
+                    whole = np.abs(linear[i]) + left[i]
+                    lost[:, :, i, j], least = whole, rest[:, i, j].copy()
+                    here = e.runner(*(x[:, e.columns] for x in ends), gradient=False)
+                    values = zip(here.low.reshape(2, boxes), here.high.reshape(2, boxes), strict=True)
+                    for fixed, (least_there, most_there) in zip(about, values, strict=True):
+                        total = np.where(fixed, left[i], 0.0).sum(axis=1) + (most_there - least_there) / 2
+                        told = np.where(fixed, linear[i], 0.0)
+                        width = total + np.abs(told).sum(axis=1) / 2  # what is told apart costs about half
+                        better = (width < least) & ~still
+                        least = np.where(better, width, least)
+                        centre[better, i, j], rest[better, i, j] = (least_there + most_there)[better] / 2, total[better]
+                        slopes[better, :, i, j] = told[better]
+                        lost[better, :, i, j] = np.where(fixed, left[i], whole)[better]
         return Affine(centre, slopes, rest, lost, jumps)
 
     def at(self, x: Floats) -> Floats:
@@ -124,13 +141,29 @@ class Matrices:
         return np.stack([np.stack([entry(e) for e in row], axis=1) for row in self.rows], axis=1)
 
 
+def seen(norm: Norm, a: Affine, scales: Scales | None) -> tuple[Floats, Floats, Floats]:
+    """Over boxes: upper estimates of the norm, the signs (boxes, variables) of the corner it is largest at, and what
+    bisecting each variable may gain (boxes, variables)."""
+    gains = worth(norm, a)
+    if scales is None:
+        return *over_boxes(norm, a), gains
+    found, where = np.full(len(a.rest), np.inf), np.ones(a.lost.shape[:2])
+    good = np.isfinite(a.rest).all(axis=(1, 2)) & np.isfinite(a.centre).all(axis=(1, 2))
+    if good.any():
+        over = greatest(norm.rows, norm.right, a.centre[good], a.slopes[good], a.rest[good], scales)
+        found[good], where[good] = over.value, over.signs
+        with np.errstate(invalid="ignore"):
+            turned = np.einsum("bi,bkij,bj->bk", over.y, a.lost[good], over.x)
+        gains[good] = np.where(np.isnan(turned), np.inf, turned)
+    return found, where, gains
+
+
 def over_boxes(norm: Norm, a: Affine) -> tuple[Floats, Floats]:
-    """Upper estimates of the norm over boxes, and the signs (boxes, variables) of the corner it is largest at."""
+    """Of the largest magnitude: upper estimates of the norm, and the signs of the corner it is largest at."""
     boxes, count = a.lost.shape[:2]
-    right = norm.inverse if norm.inverse is not None else np.eye(a.centre.shape[2])
     with np.errstate(invalid="ignore", over="ignore"):
-        centre, slopes = norm.rows @ a.centre @ right, norm.rows @ a.slopes @ right
-        rest = np.abs(norm.rows) @ a.rest @ np.abs(right)
+        centre, slopes = norm.rows @ a.centre @ norm.right, norm.rows @ a.slopes @ norm.right
+        rest = np.abs(norm.rows) @ a.rest @ np.abs(norm.right)
     size = np.abs(slopes).sum(axis=(2, 3))
     order = np.argsort(-size.max(axis=0, initial=0.0), kind="stable")
     moving = [int(k) for k in order if size[:, k].max(initial=0.0) > 0]
@@ -144,7 +177,7 @@ def over_boxes(norm: Norm, a: Affine) -> tuple[Floats, Floats]:
     for first in range(0, len(signs), step):
         some = signs[first : first + step]
         corners = centre[:, None] + np.einsum("sk,bkij->bsij", some, slopes[:, moving])
-        each = _length(corners) if norm.round else _rows(corners, rest)
+        each = _rows(corners, rest)
         best = np.argmax(each, axis=1)
         better = np.asarray(each[rows, best] > found)
         found = np.where(better, each[rows, best], found)
@@ -152,21 +185,16 @@ def over_boxes(norm: Norm, a: Affine) -> tuple[Floats, Floats]:
         chosen[:, moving] = some[best]
         where = np.where(better[:, None], chosen, where)
     if len(order) > len(moving):
-        _further(norm, centre, slopes, where)
-    if norm.round:
-        gram = rest.transpose(0, 2, 1) @ rest
-        spread = np.minimum(np.trace(gram, axis1=1, axis2=2), np.abs(gram).sum(axis=2).max(axis=1))
-        found = found + np.sqrt(spread)
+        _further(centre, slopes, where)
     return np.where(np.isfinite(found), found, np.inf), where
 
 
-def _further(norm: Norm, centre: Floats, slopes: Floats, where: Floats) -> None:
+def _further(centre: Floats, slopes: Floats, where: Floats) -> None:
     """Signs of the variables that no corner tells apart: each the one that makes the norm larger."""
     here = centre + np.einsum("bk,bkij->bij", where, slopes)
     for k in np.flatnonzero(slopes.any(axis=(0, 2, 3))):
         still = where[:, k] == 0
-        sides = [here + sign * slopes[:, k] for sign in (1.0, -1.0)]
-        sizes = [_length(x) if norm.round else np.abs(x).sum(axis=2).max(axis=1) for x in sides]
+        sizes = [np.abs(here + sign * slopes[:, k]).sum(axis=2).max(axis=1) for sign in (1.0, -1.0)]
         sign = np.where(sizes[0] >= sizes[1], 1.0, -1.0)
         where[:, k] = np.where(still, sign, where[:, k])
         step = sign[:, None, None] * slopes[:, k]
@@ -175,9 +203,8 @@ def _further(norm: Norm, centre: Floats, slopes: Floats, where: Floats) -> None:
 
 def worth(norm: Norm, a: Affine) -> Floats:
     """What bisecting each variable may gain, (boxes, variables), seen in the norm."""
-    right = np.abs(norm.inverse) if norm.inverse is not None else np.eye(a.centre.shape[2])
     with np.errstate(invalid="ignore"):
-        seen = np.abs(norm.rows) @ a.lost @ right
+        seen = np.abs(norm.rows) @ a.lost @ np.abs(norm.right)
     found: Floats = seen.sum(axis=(2, 3)) if norm.round else seen.sum(axis=3).max(axis=2)
     return np.where(np.isnan(found), np.inf, found)
 
@@ -198,7 +225,7 @@ def _length(m: Floats) -> Floats:
 def size(norm: Norm, m: Floats) -> Floats:
     """The norm of matrices (points, n, c)."""
     with np.errstate(invalid="ignore", over="ignore"):
-        b = norm.rows @ m @ (norm.inverse if norm.inverse is not None else np.eye(m.shape[2]))
+        b = norm.rows @ m @ norm.right
     return _length(b) if norm.round else np.abs(b).sum(axis=2).max(axis=1)
 
 
@@ -225,6 +252,7 @@ def stretched(matrices: Matrices, norm: Norm, effort: Effort, enough: float = -n
     least = (high - low).max(axis=0, initial=0.0) * FINEST
     upper, score, jumps = np.zeros(0), np.zeros((0, shape[1])), np.zeros(0, bool)
     left, look = np.inf, FIRST_LOOK
+    scales, fit = plain(norm.rows, norm.right) if norm.round else None, 1
     split, child = [-1] * len(tops), [-1] * len(tops)
     best, inner, at, stopped, done = -np.inf, -np.inf, np.zeros(shape[1]), "", 0
     fixed = np.array([v.listed for v in matrices.variables], bool)
@@ -232,19 +260,22 @@ def stretched(matrices: Matrices, norm: Norm, effort: Effort, enough: float = -n
         for first in range(done, len(low), BATCH):
             part = slice(first, first + BATCH)
             a = matrices.affine(low[part], high[part])
-            found, where = over_boxes(norm, a)
-            upper, score = np.concatenate([upper, found]), np.concatenate([score, worth(norm, a)])
+            found, where, gains = seen(norm, a, scales)
+            upper, score = np.concatenate([upper, found]), np.concatenate([score, gains])
             jumps = np.concatenate([jumps, a.jumps])
             middle, half = (low[part] + high[part]) / 2, (high[part] - low[part]) / 2
             points = np.where(fixed, middle, np.clip(middle + where * half, inside[:, 0], inside[:, 1]))
-            best = max(best, float(_finite(size(norm, matrices.at(points))).max()))
-            points = matrices.into(points)
-            taken = _finite(size(norm, matrices.at(points)))
+            both = np.stack([points, matrices.into(points)])
+            beyond, taken = _finite(size(norm, matrices.at(np.concatenate(both)))).reshape(both.shape[:2])
+            best, points = max(best, float(beyond.max())), both[1]
             k = int(np.argmax(taken))
             if taken[k] > inner:
                 inner, at = float(taken[k]), points[k]
         done = len(low)
         leaf = np.asarray(np.array(split, dtype=np.int64) < 0)
+        if scales is not None and leaf.sum() >= fit:
+            fit *= REFITTED
+            scales = refit(norm, matrices, low, high, np.flatnonzero(leaf), scales, upper, score)
         ceiling = max(best, 0.0) + max(SHARE * effort.gap * max(best, 0.0), effort.floor, 1e-6 * effort.gap)
         open_ = np.flatnonzero(leaf & (upper > max(ceiling, enough)))
         leaves = int(leaf.sum())
@@ -264,7 +295,7 @@ def stretched(matrices: Matrices, norm: Norm, effort: Effort, enough: float = -n
         if room <= 0 or time.monotonic() + leaves * effort.later > effort.until:
             stopped = "cells" if room <= 0 else "seconds"
             break
-        worst = open_[np.argsort(-upper[open_], kind="stable")][: min(BATCH, room)]
+        worst = open_[np.argsort(-upper[open_], kind="stable")][: min(BATCH, room, 1 + leaves // BEST)]
         wide = np.where(high[worst] - low[worst] > least, score[worst], -1.0)
         axis = np.argmax(wide, axis=1)
         usable = wide[np.arange(len(worst)), axis] > 0
@@ -282,7 +313,29 @@ def stretched(matrices: Matrices, norm: Norm, effort: Effort, enough: float = -n
     trees = tuple(_written(split, child, k) for k in range(len(tops)))
     point = {v.name: _exact(v, x) for v, x in zip(matrices.variables, at, strict=True)}
     vector = direction(norm, matrices.at(at[None])[0])
-    return Stretched(trees, leaves, float(upper[leaf].max()), inner, point, vector, stopped)
+    return Stretched(trees, leaves, float(upper[leaf].max()), inner, point, vector, stopped, scales)
+
+
+def refit(
+    norm: Norm, matrices: Matrices, low: Floats, high: Floats, leaves: Any, scales: Scales, upper: Floats, score: Floats
+) -> Scales:
+    """Scales for the worst of the leaves, where they do better over all of them; `upper` and `score` are then those."""
+    worst = leaves[np.argmax(upper[leaves])]
+    a = matrices.affine(low[worst][None], high[worst][None])
+    if not np.isfinite(upper[worst]) or not a.rest.any():
+        return scales
+    _, where, _ = seen(norm, a, scales)
+    at = a.centre[0] + np.einsum("k,kij->ij", where[0], a.slopes[0])
+    found = fitted(norm.rows, norm.right, at, a.rest[0], scales)
+    tried = [
+        seen(norm, matrices.affine(low[some], high[some]), found)
+        for some in np.split(leaves, range(BATCH, len(leaves), BATCH))
+    ]
+    values = np.concatenate([x for x, _, _ in tried])
+    if not values.max() < upper[leaves].max():
+        return scales
+    upper[leaves], score[leaves] = values, np.concatenate([x for _, _, x in tried])
+    return found
 
 
 def _finite(x: Floats) -> Floats:

@@ -38,11 +38,12 @@ if TYPE_CHECKING:
     from ..certificate.lines import Writer
 
 SAMPLES = 300
-FEW = 3000  # leaves of a search that only compares metrics
+FEW, FEWER = 3000, 24  # leaves of a search that only compares metrics; of one that is tried first
+NOTABLE = 0.95  # of the size of a bound: what another metric has to lower it to
+LENGTHS = ("gain", "residual", "bound")  # in the norm itself: where none is asked for, it may be less close
+SPARED = 2
 DIGITS = 12  # of the unit of a metric
 COST, LEAST = 12, 300  # an entry of a leaf counts as so many cells, exact arithmetic being what it is; leaves allowed
-LENGTHS = ("gain", "residual", "bound")  # in the norm itself: where none is asked for, it may be less close
-SPARED = 4
 SPARE = 1 - 1e-9
 ORBIT_BITS = 128
 MOST_BASES = 2  # for comparisons, beside the states and the metric itself
@@ -125,24 +126,25 @@ class SeveralAttempt(Attempt):
         n = len(self.obligations.states)
         spans = tuple((t.lower, t.upper) for t in self.targets)
         domain = Domain("region", Fraction(0), spans[0], targets=spans)
-        best: tuple[float, Proposal, Metric, Domain] | None = None
+        best: tuple[float, Proposal, Metric, Domain, int] | None = None
         for _ in range(1 if images is not None else LOOKS):
-            for p in self._proposed(domain):
+            proposed = self._proposed(domain)
+            for p, cells in [*((p, FEWER) for p in proposed), *((p, FEW) for p in proposed)]:
+                if cells == FEW and best is not None and best[0] < np.inf:
+                    break
                 norm = metric(p.kind, p.rows, p.inverse, n)
                 ball = self._within(norm, self._largest(norm))
-                size = self._size(p, ball) if images is None else 0.0  # the region is the set in any metric
-                if best is None or size < best[0]:
-                    best = size, p, norm, ball
-                if size < np.inf:
-                    break
+                size = self._size(p, ball, cells) if images is None else 0.0  # the region is the set in any metric
+                if best is None or size < best[0] * NOTABLE:
+                    best = size, p, norm, ball, self.needed
             if best is not None and best[0] < np.inf:
                 break
             domain = best[3] if best is not None else domain
         if best is None:
             p = self._plain()
             norm = metric(p.kind, p.rows, p.inverse, n)
-            best = np.inf, p, norm, self._within(norm, self._largest(norm))
-        _, self.chosen, self.norm, self.domain = best
+            best = np.inf, p, norm, self._within(norm, self._largest(norm)), 0
+        _, self.chosen, self.norm, self.domain, self.needed = best
         if images is not None:
             self.domain = Domain("region", self.domain.radius, spans[0], targets=spans)
         elif best[0] == np.inf:
@@ -169,7 +171,7 @@ class SeveralAttempt(Attempt):
         """A smaller ball that is kept, if the largest is not."""
         for share in SHARES:
             smaller = self._within(self.norm, Fraction(f"{to_float(self.domain.radius) * share:.4g}"))
-            if self._size(self.chosen, smaller) < np.inf:
+            if self._size(self.chosen, smaller, FEW) < np.inf:
                 self.domain, self.shrunk = smaller, True
                 return
 
@@ -278,7 +280,7 @@ class SeveralAttempt(Attempt):
             self.ranges.interrupt()
             return stretched(matrices, form, replace(effort, until=0.0), enough)
 
-    def _size(self, p: Proposal, ball: Domain) -> float:
+    def _size(self, p: Proposal, ball: Domain, cells: int) -> float:
         """The largest share of its room that a state's bound takes; inf where the ball is not kept (estimates)."""
         norm = metric(p.kind, p.rows, p.inverse, len(self.obligations.states))
         miss = self.searched("misses", ball, norm, COARSE, FEW).upper + self._shift(norm)
@@ -286,7 +288,7 @@ class SeveralAttempt(Attempt):
         most = SPARE - miss / radius if radius > 0 else 0.0
         if not (most > 0 and miss < np.inf):
             return np.inf
-        found = self.searched("slopes", ball, norm, COARSE, FEW, most)
+        found = self.searched("slopes", ball, norm, COARSE, cells, most if cells == FEW else -np.inf)
         k = found.upper
         if not k <= most:
             return np.inf
@@ -338,7 +340,7 @@ class SeveralAttempt(Attempt):
             began = time.monotonic()
             try:
                 leaves = w.leaves(proves, found.trees, bits, on)
-                line = w.matrix(proves, found.trees, bits, on, leaves, found.upper)
+                line = w.matrix(proves, found.trees, bits, on, leaves, found.upper, found.scales)
             except (Undefined, Rejected) as why:
                 self.ranges.limits[proves] = str(why)
                 if not bits:  # fractions that grow too long
