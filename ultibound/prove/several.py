@@ -39,7 +39,7 @@ if TYPE_CHECKING:
 
 SAMPLES = 300
 FEW, FEWER = 3000, 24  # leaves of a search that only compares metrics; of one that is tried first
-NOTABLE = 0.95  # of the size of a bound: what another metric has to lower it to
+NOTABLE = 0.8  # of the size of a bound: what another metric has to lower it to
 LENGTHS = ("gain", "residual", "bound")  # in the norm itself: where none is asked for, it may be less close
 SPARED = 2
 DIGITS = 12  # of the unit of a metric
