@@ -19,6 +19,7 @@ from tests.checker import (
     test_gains_boundaries,
     test_graph_boundaries,
     test_horizon_boundaries,
+    test_inequality,
     test_matrices,
     test_periodic_boundaries,
     test_product_boundaries,
@@ -49,7 +50,7 @@ PROOFS = (
     "names",
 )
 STANCES = ("calculus", "motion", "signals", "models", "rates", "flows")
-NORMS = ("matrices",)
+NORMS = ("matrices", "inequality")
 SEVERAL = ("jacobians", "several", "outcomes", "periodic", "products", "absorbed", "attracting")
 GRAPHS = ("graph", "graph_outcomes")
 SQUARES = ("squares", "polynomials")
@@ -76,7 +77,7 @@ def batteries(copies: Copies) -> dict[str, Battery]:
     """Of each module."""
     squares_cases = {f"squares: {n}": q for n, q in test_squares_boundaries.CASES.items()}
     reading, stances = Battery(test_reading.CASES, 400), Battery(test_stance_boundaries.CASES | squares_cases)
-    norms = Battery(test_matrices.CASES)
+    norms = Battery(test_matrices.CASES | test_inequality.CASES)
     horizon_cases = {f"horizon: {n}": q for n, q in test_horizon_boundaries.CASES.items()}
     orbits = (
         test_periodic_boundaries.CASES

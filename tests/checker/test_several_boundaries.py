@@ -221,6 +221,34 @@ tight("region", PLAIN, {
 })
 
 
+def by_scales() -> None:
+    """The same in |(x, 2y)|, of which the rests of direct leaves are shared by scales: misses of 1/4, slopes below 4/5."""
+    tiny = Q(1, 10**20)
+    d = in_region(Lines(claim(*PAIR, uncertain=NOISE, rest="[metric]\nkind = 'ellipsoid'")), "ellipsoid")
+    residual = str(Q(1, 4) + tiny)
+    good = but(
+        d.found("region", [("settles", "proved")], {"kind": "ellipsoid", "matrix": [["1", "0"], ["0", "4"]]}),
+        "proof 8 witness scales", [["2", "1"], ["1", "2"]], "proof 8 concludes norm", "4/5", "proof 9 witness scales", [["1"], ["1", "1"]], "proof 9 concludes norm", residual,
+        "proof 10 concludes", {"gain": "4/5", "residual": residual}, "proof 11 concludes bound", str(Q(residual) * 5), "proof 15 concludes lower", "1/2", "proof 16 concludes lower", "1/8",
+    )
+    accept("by scales", good)
+    reject("by scales, less", but(good, "proof 9 concludes norm", str(Q(1, 4) - tiny)), "proof line 10", "misses: a leaf is not shown to stay within the norm")
+    reject("by scales, much less", but(good, "proof 8 concludes norm", "1/2"), "proof line 9", "slopes: a leaf is not shown to stay within the norm")
+    accept("by other scales", but(good, "proof 8 witness scales", [["200", "100"], ["101", "200"]]))
+    reject("by scales that do not suit", but(good, "proof 9 witness scales", [["1"], ["9", "1"]]), "proof line 10", "misses: a leaf is not shown to stay within the norm")
+    reject("by scales of rows and columns exchanged", but(good, "proof 9 witness scales", [["1", "1"], ["1"]]), "proof line 10", "scales: a list of 1 numbers")
+    for value, reason in (
+        ("", "scales: none, or"), (None, "scales: none, or"), ([["1", "1"]], "scales: none, or"), ([["1", "1"]] * 3, "scales: none, or"), ([["1"], ["1", "1"]], "scales: a list of 2 numbers"), ([["1", "1"], ["1"]], "scales: a list of 2 numbers"),
+        ([["1", "1"], ["1", "1", "1"]], "scales: a list of 2 numbers"), ([["1", "1"], "11"], "scales: "), ([["1", 1], ["1", "1"]], "scales: "), ([["0", "1"], ["1", "1"]], "scales: 2 and 2 positive numbers"), ([["1", "1"], ["1", "-1"]], "scales: 2 and 2 positive numbers"),
+        (GONE, "witness: the keys of matrix are bits, scales, trees"),
+    ):
+        reject(f"scales {value}", but(good, "proof 8 witness scales", value), "proof line 9", reason)
+    reject("scales of a box", but(PLAIN, "proof 8 witness scales", [["1", "1"], ["1", "1"]]), "proof line 9", "scales: none, or of an ellipsoid")
+
+
+by_scales()
+
+
 def two_metrics() -> None:
     """The ball of one norm, the invariant region of another: a bound of 1 in it would be read in the first."""
     d = Lines(claim(*PAIR, uncertain=NOISE))
