@@ -14,7 +14,7 @@ import numpy as np
 from ..bounding.evaluate import to_float
 from ..checker.courses import nearest
 from ..checker.derive import Ranged
-from ..checker.jacobians import Table, inside, middle_and_half, named
+from ..checker.jacobians import Table, inside, middle_and_half, named, sloped
 from ..checker.matrices import Leaf, Matrix, Metric, comparison, dot, norm_over, root
 from ..checker.numerals import decimal_down, decimal_up
 from ..checker.periodic import Round, variables_of
@@ -188,7 +188,7 @@ class NormWriter(Writer):
         middle, half = middle_and_half(table.at(at))
         image = [sum((x * y for x, y in zip(row, vector, strict=True)), Fraction(0)) for row in middle]
         off = [sum((x * abs(y) for x, y in zip(row, vector, strict=True)), Fraction(0)) for row in half]
-        scale = before.most(vector) if proves.startswith("slopes") else abs(vector[0])
+        scale = before.most(vector) if sloped(proves) else abs(vector[0])
         lower = (norm.least(image) - norm.length(off)) / scale
         witness = {"bits": bits, "at": at, "direction": [str(x) for x in vector]}
         return self.append("stretch", proves, self.rests(proves, on), witness, {"lower": downward(lower)})

@@ -61,7 +61,7 @@ def of_stance(claim: Claim, name: str) -> Claim:
     (stance,) = [s for s in claim.stances if s.name == name]
     states = {x: stance.states[x] for x in claim.stances[0].states}
     asked = tuple(replace(r, stance=None) if r.stance == name else r for r in claim.requirements)
-    alone = replace(stance, name="", then=(), mirror=(), states=states)
+    alone = replace(stance, name="", then=(), states=states)
     return replace(claim, stances=(alone,), requirements=asked)
 
 
@@ -78,8 +78,8 @@ def not_yet(claim: Claim) -> str | None:
     several = len(stance.states) > 1
     if len(stance.states) > MOST_STATES:
         return f"state: {len(stance.states)} states; claims of up to {MOST_STATES} states can be proved"
-    if several and claim.route not in ("best", "slope"):
-        return f"route: {claim.route} is known for a single state; use slope or best"
+    if several and claim.route not in ("best", "slope", "split"):
+        return f"route: {claim.route} is known for a single state; use slope, split or best"
     if claim.horizon > 1 and any(q.within for q in claim.uncertain.values()):
         return "horizon: a signal within the stance is followed for one step at a time only; remove the key"
     if claim.horizon > 1 and any(q.change is not None and q.values is not None for q in claim.uncertain.values()):
@@ -132,8 +132,8 @@ def _not_between(claim: Claim) -> str | None:
     """What of a claim of named stances cannot be proved yet."""
     if len(claim.stances) > MOST_STANCES:
         return f"stance: {len(claim.stances)} stances; claims of up to {MOST_STANCES} stances can be proved"
-    if claim.route not in ("best", "slope"):
-        return f"route: {claim.route} is not known between stances yet; use slope or best"
+    if claim.route not in ("best", "slope", "split"):
+        return f"route: {claim.route} is not known between stances yet; use slope, split or best"
     if claim.horizon != 1:
         return f"horizon: {claim.horizon}; between stances one step at a time can be proved yet; remove the key"
     for number, r in enumerate(claim.requirements, 1):

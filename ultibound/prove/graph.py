@@ -19,7 +19,7 @@ from ..checker.derive import Derivation
 from ..checker.graph_outcomes import results_of
 from ..checker.rules import Proof, Rejected, proof_of
 from ..checker.statement import read_statement
-from ..claim import Claim
+from ..claim import Bad, Claim
 from ..claim.obligations import RANGED, Domain
 from ..contraction.graph import Family, Samples, bounds, families, radii
 from ..contraction.norms import floats
@@ -66,6 +66,7 @@ class GraphAttempt(Attempt):
             for s in claim.stances
             for t in s.then
         }
+        self.routes, self.leading = self._known_routes(), "slope"
         self._prove()
         self.results = results_of(self.proof)
         limits = {f"{x.writer.named(n)}": y for x in self.stances.values() for n, y in x.ranges.limits.items()}
@@ -79,6 +80,18 @@ class GraphAttempt(Attempt):
         self.decided = sum(r.verdict != "undecided" for r in self.results.requirements)
         text = assembled(claim, self.results, remarks)
         self.certificate = sealed(claim, text, self.writer.pruned(self.results.needed), self.ranges.interrupted)
+
+    def _known_routes(self) -> list[str]:
+        """The routes that gain and residual may come from: split where every step can be told apart from it."""
+        if not self.claim.correction:
+            return ["slope"]
+        try:
+            for x in self.steps.values():
+                x.matrices("split-slopes", self._around(x.before))
+        except Bad as why:  # the rates of a stance rest on the correction
+            self.enclosers[0].limits["split"] = str(why)
+            return ["slope"]
+        return ["slope", "split"]
 
     def _prove(self) -> None:
         """Sets and norms of all stances, gain and residual of every step, bounds, and what is asked."""
@@ -98,22 +111,42 @@ class GraphAttempt(Attempt):
             for k in range(1, len(o.motion.positive) + 1 if o.motion is not None else 1):
                 x.ranges.enclose(o.support(k, x.domain), on[s], gap=DECIDED, side=-1)
         moves = {s: x._movements() for s, x in each.items()}
-        lines: dict[Step, int] = {}
-        for (s, t), step in self.steps.items():
-            moving = moves[t]
-            found = step.proved(norms[t], on[s], moving) if moving is not None else None
-            if found is not None:
-                lines[s, t] = found
-        if len(lines) == len(self.steps):
+        for (_, t), step in self.steps.items():
+            step.into(norms[t])
+        pairs = {route: lines for route in self.routes if (lines := self._stepped(route, on, moves)) is not None}
+        for lines in pairs.values():
             if invariant is None:
                 invariant = self._balls([sets[s] for s in each], lines)
-            if invariant is not None:
-                w.bound(invariant, lines)
-                self._compared(invariant, on, moves)
+        if invariant is not None:
+            for route, lines in pairs.items():
+                w.bound(invariant, lines, route)
+                self._compared(invariant, on, moves, route)
         for k, r in enumerate(self.claim.requirements, 1):
             for s, x in each.items():
                 if r.kind in RANGED and r.stance in (None, s):
                     x._ranged(k, x.domain, on[s], points=True)
+
+    def _stepped(
+        self, route: str, on: Mapping[str, int], moves: Mapping[str, list[int] | None]
+    ) -> dict[Step, int] | None:
+        """Gain and residual of every step by a route; None where one has none, or they do not contract together."""
+        if route == "split" and not self._contracts(route):
+            for (s, _), step in self.steps.items() if any(r.kind == "gain" for r in self.claim.requirements) else ():
+                step.touched(on[s], route)
+            return None
+        found = {}
+        for (s, t), step in self.steps.items():
+            moving = moves[t]
+            line = None if moving is None else step.proved(on[s], moving, route)
+            if line is not None:
+                found[s, t] = line
+        return found if len(found) == len(self.steps) else None
+
+    def _contracts(self, route: str) -> bool:
+        """Whether samples over the sets leave it open that the steps contract together."""
+        rng = np.random.default_rng(0)
+        taken = {e: x.samples(x.before.domain, rng, route, x.before.norm) for e, x in self.steps.items()}
+        return bounds(self._in_norms(taken), list(self.stances)) is not None
 
     def _regions(self, norms: Mapping[str, int], images: Mapping[str, list[int]] | None) -> int | None:
         """The regions are mapped into those that follow, if their images show it: proofs/graph.md (3a)."""
@@ -149,19 +182,20 @@ class GraphAttempt(Attempt):
         room = {s: np.array(x.room) for s, x in self.stances.items()}
         weights = next(iter(self.stances.values()))._weights()
         rng = np.random.default_rng(0)
-        samples = {e: x.samples(self._around(x.before), rng) for e, x in self.steps.items()}
-        tried: list[tuple[tuple[int, float], int, Family]] = []
-        for n, family in enumerate(families(samples, room, self.claim.metric, weights)):
-            rank = self._by_samples(samples, family, regions)
-            if rank is not None:
-                tried.append((rank, n, family))
+        tried: list[tuple[tuple[int, float], int, str, Family]] = []
+        for route in self.routes:
+            samples = {e: x.samples(self._around(x.before), rng, route) for e, x in self.steps.items()}
+            for n, family in enumerate(families(samples, room, self.claim.metric, weights)):
+                rank = self._by_samples(samples, family, regions)
+                if rank is not None:
+                    tried.append((rank, n, route, family))
         tried.sort(key=lambda x: x[:2])
         best: tuple[float, Family] | None = None
-        for _, _, family in tried[:TRIED]:
+        for _, _, route, family in tried[:TRIED]:
             self._take(family)
-            size = self._size_of({e: x.pair() for e, x in self.steps.items()}, regions)
+            size = self._size_of({e: x.pair(route) for e, x in self.steps.items()}, regions)
             if best is None or size < best[0]:
-                best = size, family
+                best, self.leading = (size, family), route
             if size < np.inf and (regions or len(tried) == 1 or size < 0.9):
                 break
         self._take({s: x._plain() for s, x in self.stances.items()} if best is None else best[1])
@@ -182,19 +216,24 @@ class GraphAttempt(Attempt):
             self._take(family)
         except Rejected:
             return None
-        pairs = {}
-        for (s, t), x in samples.items():
-            v, left = floats(self.stances[t].norm.rows), floats(self.stances[s].norm.inverse)
-            a, m = v @ x.jacobians @ left, x.misses @ v.T
-            round_ = family[s].kind == "ellipsoid"
-            sizes = np.linalg.norm(a, 2, axis=(1, 2)) if round_ else np.abs(a).sum(axis=2).max(axis=1)
-            lengths = np.linalg.norm(m, axis=1) if round_ else np.abs(m).max(axis=1)
-            pairs[s, t] = float(sizes.max(initial=0.0)), float(lengths.max(initial=0.0))
+        pairs = self._in_norms(samples)
         size = self._size_of(pairs, regions)
         if size < np.inf:
             return 0, size
         found = bounds(pairs, list(self.stances))
         return (2, max(k for k, _ in pairs.values())) if found is None else (1, self._share(found))
+
+    def _in_norms(self, samples: Mapping[Step, Samples]) -> dict[Step, tuple[float, float]]:
+        """Gain and residual of every step that samples show in the norms taken: from below."""
+        pairs = {}
+        for (s, t), x in samples.items():
+            v, left = floats(self.stances[t].norm.rows), floats(self.stances[s].norm.inverse)
+            a, m = v @ x.jacobians @ left, x.misses @ v.T
+            round_ = self.stances[t].norm.kind == "ellipsoid"
+            sizes = np.linalg.norm(a, 2, axis=(1, 2)) if round_ else np.abs(a).sum(axis=2).max(axis=1)
+            lengths = np.linalg.norm(m, axis=1) if round_ else np.abs(m).max(axis=1)
+            pairs[s, t] = float(sizes.max(initial=0.0)), float(lengths.max(initial=0.0))
+        return pairs
 
     def _share(self, bound: Mapping[str, float]) -> float:
         """The largest share of its room that a bound takes."""
@@ -236,10 +275,12 @@ class GraphAttempt(Attempt):
         """Gain and residual of every step over balls of these radii, a little too large (estimates)."""
         for s, x in self.stances.items():
             x.domain = x._within(x.norm, Fraction(wanted[s]))
-        each = {e: x.pair() for e, x in self.steps.items()}
+        each = {e: x.pair(self.leading) for e, x in self.steps.items()}
         return {e: (k * (1 + 1e-6), y * (1 + 1e-6)) for e, (k, y) in each.items()}
 
-    def _compared(self, invariant: int, on: Mapping[str, int], moves: Mapping[str, list[int] | None]) -> None:
+    def _compared(
+        self, invariant: int, on: Mapping[str, int], moves: Mapping[str, list[int] | None], route: str
+    ) -> None:
         """Comparisons entry by entry: in the states themselves, and in the bases of the norms."""
         n = len(next(iter(self.stances.values())).obligations.states)
         one = tuple(tuple(Fraction(int(i == j)) for j in range(n)) for i in range(n))
@@ -248,12 +289,12 @@ class GraphAttempt(Attempt):
         for bases in [plain] if plain == normed else [plain, normed]:
             tables: dict[Step, tuple[int, int]] = {}
             for (s, t), step in self.steps.items():
-                pair = step.tables(on[s], bases[s], bases[t])
+                pair = step.tables(on[s], bases[s], bases[t], route)
                 if pair is not None:
                     tables[s, t] = pair
             if len(tables) == len(self.steps):
                 moving = [n for s in self.stances for n in moves[s] or []]
-                self.writer.compared(invariant, tables, moving, bases)
+                self.writer.compared(invariant, tables, moving, bases, route)
 
 
 def _short(x: float) -> Fraction:

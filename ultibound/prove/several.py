@@ -19,6 +19,7 @@ from ..certificate.enclosing import BITS, TWICE, Proved
 from ..certificate.lines import downward, upward
 from ..certificate.norms import NormWriter, moves_of
 from ..certificate.several import SeveralRemarks
+from ..checker.jacobians import sloped
 from ..checker.matrices import Leaf, Matrix, Metric, metric
 from ..checker.numerals import decimal_up
 from ..checker.reals import Undefined
@@ -222,6 +223,10 @@ class SeveralAttempt(Attempt):
         rows = [[self._miss(s, int(after or 0))] for s in o.states]
         if kind == "slopes":
             rows = [[o.slope(domain, s, x, int(after or 0)) for x in o.states] for s in o.states]
+        elif kind == "split-slopes":
+            rows = [[o.split_slope(domain, s, x) for x in o.states] for s in o.states]
+        elif kind == "split-residuals":
+            rows = [[self._kept_by_gait(domain, s)] for s in o.states]
         elif kind == JOINED:
             rows = [[*(o.slope(domain, s, x) for x in o.states), self._miss(s)] for s in o.states]
         ready = [[(x, self.ranges.runner(x, False)) for x in row] for row in rows]
@@ -233,9 +238,12 @@ class SeveralAttempt(Attempt):
     def _miss(self, s: str, steps: int = 0) -> Obligation:
         return self.obligations.miss(s, steps)
 
+    def _kept_by_gait(self, domain: Domain, s: str) -> Obligation:
+        return self.obligations.split_residual(domain, s)
+
     def _form(self, proves: str, norm: Metric) -> Norm:
         """The norm in which a matrix is seen."""
-        inverse = floats(norm.inverse) if proves.startswith("slopes") else None
+        inverse = floats(norm.inverse) if sloped(proves) else None
         if proves == JOINED:
             inverse = np.diag([*np.diag(floats(norm.inverse)), 1.0])
         return Norm(floats(norm.rows), inverse, norm.kind == "ellipsoid")
