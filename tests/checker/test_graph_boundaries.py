@@ -8,6 +8,7 @@ from __future__ import annotations
 
 from collections.abc import Sequence
 from fractions import Fraction as Q
+from functools import partial
 from types import SimpleNamespace
 from typing import Any
 
@@ -236,9 +237,9 @@ def what_is_kept() -> None:
         reject(f"no basis {end}", but(good, f"proof 18 witness {end}", bad), "proof line 19", "the inverse times the matrix is not 1")
         reject(f"a basis {end} without rows", but(good, f"proof 18 witness {end} rows", GONE), "proof line 19", "rows and inverse")
         reject(f"entries in another basis {end}", but(good, f"proof 18 witness {end}", {"rows": [["2"]], "inverse": [["1/2"]]}, "proof 18 concludes 1,1", "3"), "proof line 23", "different bases")
-    wrong = regions(top='route = "split"\ncorrection = ["f"]\n[define]\nf = "x"').found("region", [("settles", "proved")])
-    reject("another route", wrong, "claim", "only the route slope")
-    reject("a horizon", regions(top="horizon = 2").found("region", [("settles", "proved")]), "claim", "only the route slope over one step")
+    wrong = regions(top='route = "sector"\ncorrection = ["f"]\n[define]\nf = "x"').found("region", [("settles", "proved")])
+    reject("another route", wrong, "claim", "only the routes slope and split")
+    reject("a horizon", regions(top="horizon = 2").found("region", [("settles", "proved")]), "claim", "only the routes slope and split over one step")
 
 
 # balls: R = 1 and 3/4; 3/8 x + p leads from 1 to 3/8 + 3/8 about 1/4, x/2 + q from 3/4 to 9/16 about 0
@@ -566,16 +567,16 @@ def corrected() -> None:
 def steps_gone_through(checker: Any) -> None:
     """At most 20000 of them, with three at a time 6666: from level 6666 down by 1 each is one too many."""
     pairs = {step: (Q(1), Q(-1)) for step in ("ab", "bc", "ca")}
-    results, wanted = SimpleNamespace(pairs=lambda: pairs), dict.fromkeys("abc", Q(0))
-    counts = [checker.graph_outcomes.GraphResults.count_of(results, {"a": Q(n)}, wanted) for n in (0, 6665, 6666)]
+    results, wanted = SimpleNamespace(pairs=lambda route: pairs), dict.fromkeys("abc", Q(0))
+    counts = [checker.graph_outcomes.GraphResults.count_of(results, {"a": Q(n)}, wanted, "slope") for n in (0, 6665, 6666)]
     assert counts == [0, 6665, None]
 
 
 @unit
 def levels_below(checker: Any) -> None:
     """Of a, which nothing leads to, the level is b's less 1: none below 0, where b's alone would be kept."""
-    results = SimpleNamespace(each=("a", "b"), pairs=lambda: {("a", "b"): (Q(1), Q(1)), ("b", "b"): (Q(0), Q(0))})
-    below, hairs = checker.graph_outcomes.GraphResults.below, Q("1" + STEP)
+    results = SimpleNamespace(each=("a", "b"), pairs=lambda route: {("a", "b"): (Q(1), Q(1)), ("b", "b"): (Q(0), Q(0))})
+    below, hairs = partial(checker.graph_outcomes.GraphResults.below, route="slope"), Q("1" + STEP)
     assert below(results, {"a": Q(1), "b": Q(1)}) == {"a": 0, "b": 1}
     assert below(results, {"a": Q(1), "b": 1 - hairs}) is None and below(results, {"a": -hairs, "b": Q(1)}) is None
 

@@ -286,12 +286,11 @@ def componentwise(
 ) -> dict[str, Domain]:
     """proofs/graph.md (5): a bound for each state in each stance, by comparison in a basis a stance."""
     moving = {name: movements(d) for name, d in g.stances.items()}
-    wanted = [("graph-entries", x) for _ in g.steps for x in OF_COMPARISON.get(proves, ())]
-    wanted += [("range", f"target-slope[{s},{h}]") for name in moving for s, h in moving[name]]
+    name = proves if proves in OF_COMPARISON else "componentwise"
+    wanted = [("graph-entries", x) for _ in g.steps for x in OF_COMPARISON[name]]
+    wanted += [("range", f"target-slope[{s},{h}]") for each in moving.values() for s, h in each]
     sets = kept(used)
-    if proves not in OF_COMPARISON:
-        raise Rejected(f"a comparison proves {' or '.join(OF_COMPARISON)}")
-    require(proves, proves, used[1:], wanted)
+    require(proves, name, used[1:], wanted)
     parts(used[1:], [e for e in g.between for _ in range(2)] + [name for name in moving for _ in moving[name]])
     lines = used[1 : 1 + 2 * len(g.steps)]
     ranges, far = iter(used[1 + len(lines) :]), dict[str, list[Fraction]]()

@@ -125,7 +125,8 @@ def named(d: Derivation, proves: str) -> list[list[str]]:
     """The entries of a matrix, row by row."""
     kind, at, steps = proves.partition("@")
     if kind not in (BY_SLOPE if at else ENTRY):
-        raise Rejected(f"a matrix proves {', '.join(ENTRY)}, or {' or '.join(BY_SLOPE)} after fewer steps")
+        more = " or ".join(BY_SPLIT)
+        raise Rejected(f"a matrix proves {' or '.join(BY_SLOPE)}, or these after fewer steps, or {more}")
     columns = d.states if sloped(proves) else ("",)
     return [[f"{ENTRY[kind]}{at}{steps}[{s}{',' if x else ''}{x}]" for x in columns] for s in d.states]
 
