@@ -159,7 +159,7 @@ def based(basis: Any, n: int) -> tuple[Matrix, Matrix]:
 
 
 def pair(g: Graph, part: str, route: str, proves: str, used: list[Line], claimed: Quantities) -> tuple[Domain, Metric]:
-    """proofs/graph.md (2), proofs/split.md (4): gain and residual of a step, its error from the target that follows."""
+    """proofs/graph.md (2), proofs/split.md (3): gain and residual of a step, its error from the target that follows."""
     after = part.partition(">")[2]
     d = g.stances[after]
     ranges = [("range", f"target-slope[{s},{h}]") for s, h in movements(d)]

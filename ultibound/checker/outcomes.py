@@ -81,7 +81,7 @@ class SeveralResults(Results):
         return Span(min(centre.lower - inner_low, inner_high - centre.upper), min(found)[0] if found else None)
 
     def of_route(self, name: str) -> Route:
-        """proofs/several.md (2), proofs/split.md (4): gain and residual in the metric, and the bound they give."""
+        """proofs/several.md (2), proofs/split.md (3): gain and residual in the metric, and the bound they give."""
         line, (slopes, rest) = self.one(name, name), OF_ROUTE[name]
         if line is None or line.domain != self.domain:
             raise Rejected(f"gain and residual of {name} refer to another set")

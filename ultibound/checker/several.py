@@ -302,7 +302,7 @@ def moved(d: Derivation, lines: list[Line]) -> list[Fraction]:
 
 
 def pair(d: Derivation, route: str, proves: str, used: list[Line], claimed: Quantities) -> Domain:
-    """proofs/several.md (2), proofs/split.md (4): gain and residual of a route in the metric."""
+    """proofs/several.md (2), proofs/split.md (3): gain and residual of a route in the metric."""
     ranges = [("range", f"target-slope[{s},{h}]") for s, h in movements(d)]
     on = fewer(proves)
     require(proves, f"{route}{on}", used, [*(("matrix", f"{x}{on}") for x in OF_ROUTE[route]), *ranges])

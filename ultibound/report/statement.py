@@ -141,6 +141,11 @@ def _map(claim: Claim, stance: Stance) -> list[Block]:
                 "that stance."
             )
         )
+    if stance.mirror:
+        turned = _joined([symbol(s) for s in stance.mirror])
+        blocks.append(
+            said("The nominal gait ought to turn the error round, from this step to the next, of ", *turned, ".")
+        )
     if claim.horizon > 1:
         blocks.append(said(f"{claim.horizon} steps are taken together as one map."))
     return blocks
@@ -230,14 +235,15 @@ def obligations(claim: Claim) -> list[Block]:
     for stance in claim.stances:
         alone = of_stance(claim, stance.name) if stance.name else claim
         caption: Text = (f"Ranges to be enclosed{', stance ' + stance.name if stance.name else ''}",)
-        rows = [_owed(o, name, meaning) for o, name, meaning in _listed(alone)]
+        rows = [_owed(o, name, meaning) for o, name, meaning in _listed(alone, not stance.name)]
         head: tuple[Text, ...] = (("obligation",), ("range of",), ("over",), ("boxes to begin with",))
         blocks.append(Table(caption, head, tuple(rows), "lllr"))
     blocks.append(Items(tuple(_ends(claim))))
     return blocks
 
 
-def _listed(claim: Claim) -> list[tuple[Obligation, str, Formula]]:
+def _listed(claim: Claim, plain: bool) -> list[tuple[Obligation, str, Formula]]:
+    """`plain`: of a claim whose stances have no names, where more routes are known."""
     o = Obligations(claim)
     nothing = Fraction(0)
     region = Domain("region", nothing, (nothing, nothing))
@@ -259,15 +265,15 @@ def _listed(claim: Claim) -> list[tuple[Obligation, str, Formula]]:
         add(functools.partial(o.miss, s), row(minus(after, aim), words(" on the target")))
         for h in o.moving(s):
             add(functools.partial(o.target_slope, h, s), partial(aim, symbol(h)))
-    if claim.correction and len(o.states) == 1:
-        s = o.state
-        nominal = call("N", symbol(s))
-        add(
-            functools.partial(o.split_slope, region),
-            partial(plus(symbol(s), minus(symbol(s, "+"), nominal)), symbol(s)),
-        )
-        add(functools.partial(o.split_residual, region), words("nominal step less the state, correction on the target"))
-    if len(claim.correction) == 1 and len(o.states) == 1 and claim.horizon == 1:
+    for s in o.states if claim.correction else ():
+        corrected = minus(symbol(s, "+"), call("N", symbol(s)))
+        turned = s in o.stance.mirror
+        for x in o.states:
+            told_apart = corrected if x != s else minus(corrected, symbol(s)) if turned else plus(symbol(s), corrected)
+            add(functools.partial(o.split_slope, region, s, x), partial(told_apart, symbol(x)))
+        kept = "nominal step less where it ought to lead" if turned else "nominal step less the state"
+        add(functools.partial(o.split_residual, region, s), words(f"{kept}, correction on the target"))
+    if plain and len(claim.correction) == 1 and len(o.states) == 1 and claim.horizon == 1:
         s, by = o.state, symbol(claim.correction[0])
         aimed = row(by, words(" on the target"))
         meanings = (partial(symbol(s, "+"), by), partial(by, symbol(s)), aimed, words("nominal step less the state"))
