@@ -137,7 +137,7 @@ def test_a_gain_is_refuted_only_where_neither_route_has_a_smaller_one(gait: str,
 
 TWO = """format = 1
 {top}correction = [{names}]
-effort.gap = 0.03
+effort.gap = 0.05
 [state]
 x = [-0.3, 0.3]
 y = [-0.3, 0.3]
@@ -147,8 +147,8 @@ d = [-0.01, 0.01]
 fx = "x/2 - y/8"
 fy = "3*y/4 - x/16"
 [next]
-x = "x + 0.01*sin(30*x) - fx + d/2"
-y = "y + 0.02*sin(90*y) - fy + d"
+x = "x + 0.01*sin(80*x) - fx + d/2"
+y = "y - fy + d + 0.03*sin(9*y)"
 [target]
 x = 0
 y = 0
@@ -156,15 +156,15 @@ y = 0
 
 
 def test_two_states_have_the_gain_and_residual_by_hand() -> None:
-    """G = [[1/2, 1/8], [1/16, 1/4]]: in the largest magnitude 5/8; ε = max(0.01 + 0.005, 0.02 + 0.01), b entry by entry."""
+    """G = [[1/2, 1/8], [1/16, 1/4]]: in the largest magnitude 5/8; ε = max(0.01 + 0.005, 0.04), b entry by entry: there the smaller counts too."""
     r = proved(TWO.format(top='route = "split"\nmetric.kind = "box"\n', names='"fx", "fy"') + asked(
-        "settles", "gain <= 5/8", "gain < 5/8", "residual <= 0.031", "bound <= 0.0827", "bound(x) <= 0.0425", "push(x) >= 0.25", "steps(x, 0.3, 0.1) <= 6")).results
+        "settles", "gain <= 5/8", "gain < 5/8", "residual <= 0.0421", "bound <= 0.1125", "bound(x) <= 0.047", "push(x) >= 0.25", "steps(x, 0.3, 0.12) <= 6")).results
     assert verdicts(r) == ["proved", "proved", "refuted", "proved", "proved", "proved", "proved", "proved"] and r["route"] == "split"
     assert_encloses(r["gain"], Q(5, 8), "1e-9")
-    assert_encloses(r["residual"], Q(3, 100), "0.032")
-    exact = np.linalg.solve(np.eye(2) - [[1 / 2, 1 / 8], [1 / 16, 1 / 4]], [0.015, 0.03])  # |G|, and ε state by state
+    assert_encloses(r["residual"], Q(4, 100), "0.053")
+    exact = np.linalg.solve(np.eye(2) - [[1 / 2, 1 / 8], [1 / 16, 1 / 4]], [0.015, 0.04])  # |G|, and ε state by state
     for s, b in zip(("x", "y"), exact, strict=True):
-        assert b * (1 - 1e-9) <= float(Q(r["states"][s]["bound"]["upper"])) <= b * 1.035
+        assert b * (1 - 1e-9) <= float(Q(r["states"][s]["bound"]["upper"])) <= b * 1.055
     assert r["routes"]["slope"]["bound"] is None
 
 
@@ -177,8 +177,8 @@ def test_one_correction_of_two_states_says_nothing_and_is_left_out() -> None:
 
 def turned() -> str:
     """M = diag(1, −1) and one correction: M + (1, 1)(−1, 1)ᵀ/2 = [[1, 1], [−1, −1]]/2 is 0 when squared."""
-    text = (f'format = 1\ncorrection = ["shift"]\neffort.gap = 0.05\n[uncertain]\nd = [-0.005, 0.005]\n[define]\nshift = "(target(x) - x + y - target(y))/2"\n'
-            f'[next]\nx = "x + shift + 0.004*sin(90*x) + d"\ny = "-y + shift - d"\n')
+    text = ('format = 1\ncorrection = ["shift"]\neffort.gap = 0.05\n[uncertain]\nd = [-0.005, 0.005]\n[define]\nshift = "(target(x) - x + y - target(y))/2"\n'
+            '[next]\nx = "x + shift + 0.004*sin(90*x) + d"\ny = "-y + shift - d"\n')
     for name, other, target, span in (("left", "right", "0.2", "[-0.2, 0.6]"), ("right", "left", "-0.2", "[-0.6, 0.2]")):
         text += f'[stance.{name}]\nthen = "{other}"\nmirror = ["y"]\nstate = {{ x = [-0.3, 0.3], y = {span} }}\ntarget = {{ x = 0, y = {target} }}\n'
     return text

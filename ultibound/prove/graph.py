@@ -24,7 +24,7 @@ from ..claim.obligations import RANGED, Domain
 from ..contraction.graph import Family, Samples, bounds, families, radii
 from ..contraction.norms import floats
 from .one import COARSE, DECIDED, Attempt, Known
-from .several import SHARES, SPARE
+from .several import SHARES, SPARE, identity
 from .stances import StanceSearch, StepSearch
 
 TRIED = 6  # families of norms, the best by samples first
@@ -282,8 +282,7 @@ class GraphAttempt(Attempt):
         self, invariant: int, on: Mapping[str, int], moves: Mapping[str, list[int] | None], route: str
     ) -> None:
         """Comparisons entry by entry: in the states themselves, and in the bases of the norms."""
-        n = len(next(iter(self.stances.values())).obligations.states)
-        one = tuple(tuple(Fraction(int(i == j)) for j in range(n)) for i in range(n))
+        one = identity(len(next(iter(self.stances.values())).obligations.states))
         plain: dict[str, Basis] = dict.fromkeys(self.stances, (one, one))
         normed: dict[str, Basis] = {s: (x.norm.rows, x.norm.inverse) for s, x in self.stances.items()}
         for bases in [plain] if plain == normed else [plain, normed]:

@@ -309,11 +309,14 @@ class SeveralAttempt(Attempt):
         cells: int,
         enough: float = -np.inf,
         later: float = 0.0,
+        form: Norm | None = None,
     ) -> Stretched:
+        """`form`: the norm in which the matrix is seen, where it is not the set's own."""
+
         def watch(leaves: int, high: float) -> None:
             self.watch(f"{proves} of {len(self.obligations.states)} states", leaves, high)
 
-        matrices, form = self.matrices(proves, domain, norm), self._form(proves, norm)
+        matrices, form = self.matrices(proves, domain, norm), form or self._form(proves, norm)
         effort = Effort(gap, cells, self.ranges.until - self.ranges.spent, watch, later=later)
         try:
             return stretched(matrices, form, effort, enough)
@@ -374,12 +377,27 @@ class SeveralAttempt(Attempt):
         slopes, rest = (self._norm(f"{x}{after}", on) for x in OF_ROUTE[route])
         return None if slopes is None or rest is None else (slopes, rest)
 
-    def _norm(self, proves: str, on: int) -> tuple[int, tuple[str, ...], int] | None:
-        """The line of a norm over the set, with a stretch that attains nearly as much; its trees and bits."""
-        w, share = self.writer, 1.0
+    def _leaves_allowed(self) -> int:
         asked = any(r.kind in LENGTHS and r.state is None for r in self.claim.requirements)
         cells = self.claim.cells // ((COST if asked else COST * SPARED) * len(self.obligations.states) ** 2)
-        cells = min(self.claim.cells, max(LEAST, self.needed, cells))
+        return min(self.claim.cells, max(LEAST, self.needed, cells))
+
+    def _evenly(self, proves: str, table: Table, on: int) -> Table:
+        """Trees over whose leaves the residual of every state is close, not only the largest of all."""
+        taken = self.sampled(self.matrices(proves, self.domain, self.norm), np.random.default_rng(0))
+        sizes = np.abs(taken[:, :, 0]).max(axis=0, initial=0.0)
+        if len(sizes) == 1 or not sizes.min() > 0:
+            return table
+        even = Norm(np.diag(1 / sizes), None, False)
+        found = self.searched(proves, self.domain, self.norm, self.gap, self._leaves_allowed(), form=even)
+        with suppress(Undefined, Rejected):
+            self.leaves[proves] = self.writer.leaves(proves, found.trees, table[2], on)
+            return 0, found.trees, table[2]
+        return table
+
+    def _norm(self, proves: str, on: int) -> tuple[int, tuple[str, ...], int] | None:
+        """The line of a norm over the set, with a stretch that attains nearly as much; its trees and bits."""
+        w, share, cells = self.writer, 1.0, self._leaves_allowed()
         bits = 0 if w.exact(proves, on) else BITS
         later = TWICE * w.matrix_seconds(proves, bits, on)
         for _ in range(4):
@@ -468,6 +486,8 @@ class SeveralAttempt(Attempt):
     def _entries(self, route: str, tables: tuple[Table, Table], on: int) -> list[tuple[int, int]]:
         """Lines of entries of both matrices of a route, a basis: proofs/several.md (3)."""
         found: list[tuple[int, int]] = []
+        if route == "split":
+            tables = tables[0], self._evenly(OF_ROUTE[route][1], tables[1], on)
         for basis in self._bases():
             slopes, rest = (
                 self.writer.entries(proves, trees, bits, on, self.leaves[proves], basis)
@@ -478,10 +498,9 @@ class SeveralAttempt(Attempt):
 
     def _bases(self) -> Iterator[tuple[Matrix, Matrix]]:
         """Bases for a comparison: the states themselves, the rows of the metric, the other metrics proposed."""
-        n = len(self.obligations.states)
-        identity = tuple(tuple(Fraction(int(i == j)) for j in range(n)) for i in range(n))
-        seen = [identity]
-        yield identity, identity
+        one = identity(len(self.obligations.states))
+        seen = [one]
+        yield one, one
         others = [(p.rows, p.inverse) for p in self.others if p.kind == "polytope"][:MOST_BASES]
         for rows, inverse in [(self.norm.rows, self.norm.inverse), *others]:
             if rows not in seen:
@@ -529,6 +548,10 @@ class SeveralAttempt(Attempt):
         return SeveralRemarks(
             self.claim, self.obligations, self.results, self.ranges.limits, self.ranges.interrupted
         ).all()
+
+
+def identity(n: int) -> Matrix:
+    return tuple(tuple(Fraction(int(i == j)) for j in range(n)) for i in range(n))
 
 
 def scaled(p: Proposal) -> Proposal:

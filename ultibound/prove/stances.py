@@ -151,7 +151,7 @@ class StepSearch(SeveralAttempt):
         slopes, rest = (self._norm(x, on) for x in OF_ROUTE[route])
         if slopes is None or rest is None:
             return None
-        self.tabled[route] = slopes, rest
+        self.tabled[route] = slopes, rest if route == "slope" else self._evenly(OF_ROUTE[route][1], rest, on)
         w, d = self.writer, self.after.writer.derivation
         far = moved(d, [w.proof.lines[n] for n in moves])
         residual = w.proof.lines[rest[0]].concludes["norm"] + self.after.norm.length(far)
