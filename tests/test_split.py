@@ -158,7 +158,7 @@ y = 0
 def test_two_states_have_the_gain_and_residual_by_hand() -> None:
     """G = [[1/2, 1/8], [1/16, 1/4]]: in the largest magnitude 5/8; ε = max(0.01 + 0.005, 0.04), b entry by entry: there the smaller counts too."""
     r = proved(TWO.format(top='route = "split"\nmetric.kind = "box"\n', names='"fx", "fy"') + asked(
-        "settles", "gain <= 5/8", "gain < 5/8", "residual <= 0.0421", "bound <= 0.1125", "bound(x) <= 0.047", "push(x) >= 0.25", "steps(x, 0.3, 0.12) <= 6")).results
+        "settles", "gain <= 5/8", "gain < 5/8", "residual <= 0.0421", "bound <= 0.1125", "bound(x) <= 0.047", "push(x) >= 0.25", "steps(x, 0.3, 0.12) <= 8")).results
     assert verdicts(r) == ["proved", "proved", "refuted", "proved", "proved", "proved", "proved", "proved"] and r["route"] == "split"
     assert_encloses(r["gain"], Q(5, 8), "1e-9")
     assert_encloses(r["residual"], Q(4, 100), "0.053")

@@ -72,7 +72,8 @@ class Steps(Draft):
         if kind:
             results["set"]["centre"] = dict(centre)
         results["states"], results["metric"] = by_state(), norms[0] if norms[0] == norms[1] else None
-        results["routes"] = {"slope": {"gain": None, "residual": None, "bound": None}} if any(x["proves"].endswith(">right:slope") for x in self.proof) else {}
+        proved = {x["proves"].partition(":")[2] for x in self.proof if ">" in x["proves"]}
+        results["routes"] = {route: {"gain": None, "residual": None, "bound": None} for route in ("slope", "split") if route in proved}
         results["stances"] = {name: {"set": {"kind": kind, "centre": dict(centre), "radius": None} if kind else None, "metric": norm, "states": by_state()}
                               for name, norm in zip(("left", "right"), norms, strict=True)}
         return entries
@@ -626,8 +627,137 @@ def of_the_ground() -> None:
         reject(f"a stance that may not last, {n}", without(good, n), "results", "results.set.kind: 'region' is claimed, None was derived")
 
 
+# told apart from its correction: x -> -9/8 x + 3/4 e + p, e = x - 1/4, from [-1, 3/2], and + q, e = x + 1/4, back; without it -9/8 x, turned round -x and x/8 astray
+
+BOTH = ('mirror = ["x"]\n', 'mirror = ["x"]\n')
+ASTRAY = [("left", "right", "3/8", "5/32", "1/4", "5/16", "p", "1/8"), ("right", "left", "3/8", "3/32", "1/4", "1/4", "q", "1/16")]
+
+
+def apart(asked: Sequence[str] = ("settles",), top: str = "", mirrors: tuple[str, str] = BOTH, routes: Sequence[str] = ("slope", "split")) -> Steps:
+    """Lines: 1 6 metrics, 2 7 targets, 3 8 points, 4 9 balls, 5 10 images, 11 invariant, 12 13 15 16 matrices of slope, 14 17 its pairs, 18 its bound, 19 to 22 stretches,
+    23 24 26 27 matrices of split, 25 28 its pairs, 29 its bound, 30 to 33 entries, 34 comparison, 35 to 38 stretches."""
+    text = claim("-9*x/8 - f + p", "-9*x/8 - f + q", ('[-1, "3/2"]', '["-3/2", 1]'), asked, targets=("1/4", "-1/4"), top=f'{top}correction = ["f"]')
+    text = text.replace("[stance.left]", '[define]\nf = "-3/4*(x - target(x))"\n[stance.left]')
+    for name, mirror in zip(("left", "right"), mirrors, strict=True):
+        text = text.replace(f"[stance.{name}]\n", f"[stance.{name}]\n{mirror}")
+    d = Steps(text)
+    for name, target, low, high in (("left", "1/4", "-7/8", "5/16"), ("right", "-1/4", "-1/4", "13/16")):
+        first = len(d.proof)
+        d.metric(name)
+        d.range(f"{name}:target[x]", target, target)
+        d.point(f"{name}:target[x]", {}, target)
+        d.theorem("largest-ball", f"{name}:ball", [first + 1, first + 2, first + 3], radius="5/4", outer="5/4")
+        d.range(f"{name}:image[x]", low, high, trees=("c",))
+    invariant, d.form = d.theorem("graph-regions", "invariant", [1, 2, 5, 6, 7, 10]), "c"
+    for route, matrices, b in (("slope", ("slopes", "misses"), ("39/220", "49/220")), ("split", ("split-slopes", "split-residuals"), ("7/20", "2/5"))):
+        if route not in routes:
+            continue
+        pairs, tables = [], []
+        for s, t, *known in ASTRAY:
+            k, e = known[:2] if route == "slope" else known[2:4]
+            norm = 6 if s == "left" else 1
+            lines = [d.matrix(f"{s}>{t}:{x}", v, [invariant, norm]) for x, v in zip(matrices, (k, e), strict=True)]
+            pairs.append(d.theorem(route, f"{s}>{t}:{route}", lines, gain=k, residual=e))
+        ones = {"left": "1", "right": "1"}
+        d.line("graph-bound", f"bound[{route}]", [invariant, *pairs], {"p": {s: [x] for s, x in ones.items()}, "b": {"left": [b[0]], "right": [b[1]]}}, left=b[0], right=b[1])
+        if route == "split":
+            for s, t, *known in ASTRAY:
+                tables += [d.table(f"{s}>{t}:{x}", {"1,1": v}, [invariant, 6 if s == "left" else 1]) for x, v in zip(matrices, known[2:4], strict=True)]
+            d.line("graph-componentwise", "split-componentwise", [invariant, *tables], {"p": {s: [x] for s, x in ones.items()}, "b": {"left": [b[0]], "right": [b[1]]}}, **{"left:x": b[0], "right:x": b[1]})
+        for s, t, *known in ASTRAY:
+            k, e = known[:2] if route == "slope" else known[2:4]
+            norm, (name, most), side = 6 if s == "left" else 1, known[4:], "-" if s == "left" else ""
+            astray = {name: f"{side}{most}"} | ({"x": "3/2" if s == "left" else "-3/2"} if route == "split" else {})
+            d.stretch(f"{s}>{t}:{matrices[0]}", {"x": "0", name: "0"} if route == "slope" else {"x": "0"}, k, [invariant, norm])
+            d.stretch(f"{s}>{t}:{matrices[1]}", astray, e, [invariant, norm])
+    return d
+
+
+TOLD_APART = [
+    ("settles", "proved"), ("gain <= 1/4", "proved"), ("gain < 1/4", "refuted"), ('"gain < 1/4"\nin = "right"', "refuted"), (f"gain <= 1/4 - 1{STEP}", "refuted"),
+    ("residual <= 5/32", "proved"), ("residual < 5/32", "refuted"), ("bound <= 49/220", "proved"), ("bound < 49/220", "undecided"), ("bound(x) <= 49/220", "proved"), ('"bound(x) <= 39/220"\nin = "left"', "proved"), ('"bound(x) < 39/220"\nin = "left"', "undecided"),
+    # by slope 5/4 -> 15/32 + 5/32 = 5/8 -> 15/64 + 3/32 = 21/64; by split 5/8, 13/32: levels d = 1/2 are kept by both
+    ("steps(x, 5/4, 1/2) <= 2", "proved"), ("steps(x, 5/4, 1/2) <= 1", "undecided"),
+]
+ALONE = [
+    ("settles", "proved"), ("gain <= 1/4", "proved"), ("gain < 1/4", "refuted"), ('"gain < 1/4"\nin = "left"', "refuted"), ("residual <= 5/16", "proved"), ("residual < 5/16", "undecided"), ("residual < 5/32", "refuted"), ("residual <= 5/32", "undecided"),
+    ('"residual <= 1/4"\nin = "right"', "proved"), ('"residual < 1/4"\nin = "right"', "undecided"), ('"residual < 3/32"\nin = "right"', "refuted"), ("bound <= 2/5", "proved"), ("bound < 2/5", "undecided"), ("bound(x) <= 49/220", "proved"),
+]
+APART_FIGURES: dict[str, tuple[str | None, str | None]] = {
+    "gain": ("3/8", "3/8"), "residual": ("5/32", "5/32"), "routes slope gain": ("3/8", "3/8"), "routes slope residual": ("5/32", "5/32"), "routes split gain": ("1/4", "1/4"), "routes split residual": ("5/16", "5/16"),
+    "states x bound": (None, "49/220"), "stances left states x bound": (None, "39/220"), "requirements 0 value": (None, "49/220"),
+}
+
+
+def told_apart() -> None:
+    asked = [that for that, _ in TOLD_APART]
+    judged("told apart", apart(asked).found("region", TOLD_APART))
+    alone = [that for that, _ in ALONE]
+    judged("split alone", apart(alone, top='route = "split"\n').found("region", ALONE))
+    good = apart().found("region", [("settles", "proved")])
+    exact("told apart", good, APART_FIGURES)
+    least = str(Q(2, 5) - Q(1, 10**40))
+    below = but(good, "results routes split bound", {"lower": least, "upper": "2/5"})
+    accept("the bound of split from below", below)
+    reject("the bound of split, less", but(below, "results routes split bound upper", hair("2/5", -1)), "results", "upper: more is claimed")
+    reject("the bound of split, from below", but(below, "results routes split bound lower", hair("2/5", 0)), "results", "lower: more is claimed")
+    reject("the route with the larger bound", but(good, "results route", "split"), "results", "results.route: 'split' is claimed, 'slope' was derived")
+    reject("a route less", but(good, "results routes split", GONE), "results", "results.routes: the keys are")
+    short, leaf = "less than what the lines used show", "a leaf is not shown to stay within the norm"
+    tight("told apart", good, {
+        23: (("norm", -1, leaf),), 24: (("norm", -1, leaf),), 25: (("gain", -1, short), ("residual", -1, short)), 28: (("gain", -1, short), ("residual", -1, short)), 29: (("left", -1, "no less than b"), ("right", -1, "no less than b")),
+        26: (("norm", -1, leaf),), 27: (("norm", -1, leaf),), 35: (("lower", 1, "not shown to be stretched"),), 36: (("lower", 1, "not shown to be stretched"),), 37: (("lower", 1, "not shown to be stretched"),), 38: (("lower", 1, "not shown to be stretched"),),
+    })
+    for number, old, reason in ((25, [23, 13], "split rests on matrix split-slopes, matrix split-residuals"), (25, [12, 24], "split rests on"), (28, [23, 27], "lines about"), (28, [26, 24], "lines about"), (28, [26, 16], "split rests on"), (29, [11, 25, 17], "rests on"), (29, [11, 14, 17], "bound[slope] rests on"), (29, [11, 14, 28], "bound[slope] rests on")):
+        reject(f"uses of {number}: {old}", but(good, f"proof {number - 1} uses", old), f"proof line {number}", reason)
+    for number, rule, proves, reason in ((25, "slope", "left>right:slope", "slope rests on"), (25, "slope", "left>right:split", "slope rests on"), (25, "split", "left>right:slope", "split rests on"), (23, "matrix", "left>right:split-slope", "proves slopes or misses"), (23, "matrix", "left>right:split-slopes@1", "after fewer steps"),
+                                         (25, "split", "left:split", "not known of one stance alone"), (25, "split", "split", "not known of all stances together"), (29, "graph-bound", "bound[slope]", "bound[split] rests on"), (29, "graph-bound", "bound[curve]", "bound[split] rests on")):
+        reject(f"{number} as {rule} of {proves}", but(good, f"proof {number - 1} rule", rule, f"proof {number - 1} proves", proves), f"proof line {number}", reason)
+    plain = but(good, "claim text", good["claim"]["text"].replace('correction = ["f"]', ""))
+    reject("no correction is named", plain, "proof line 23", "split-slope[x,x] is no obligation of this claim")
+    # without the turn 1 + 3/4 = 7/4; where it is of the stance before that counts
+    for n, mirrors in enumerate((BOTH[:1] + ("",), ("", BOTH[1]))):
+        reject(f"not turned, {n}", apart(mirrors=mirrors).found("region", [("settles", "proved")]), f"proof line {26 if n == 0 else 23}", leaf)
+    # of a comparison entries of one route alone
+    compared = but(good, "proof 33 concludes left:x", "39/220")
+    reject("a comparison of less", compared, "proof line 34", "less than what the comparison shows")
+    reject("entries of split as of slope", but(good, "proof 33 proves", "componentwise"), "proof line 34", "componentwise rests on")
+    reject("an entry of less", but(good, "proof 29 concludes 1,1", hair("1/4", -1)), "proof line 30", "less than what the leaves show")
+    # a gain is refuted where every route is shown not to be below, on one and the same step
+    undecided = but(good, "results requirements 0 verdict", "undecided")
+    both = apart(["gain < 1/4"]).found("region", [("gain < 1/4", "refuted")])
+    accept("refuted by both", both)
+    for gone, verdict in (((35, 37), "undecided"), ((35,), "refuted"), ((37,), "refuted"), ((19, 21), "undecided"), ((19, 37), "undecided"), ((21, 35), "undecided"), ((19, 35), "refuted")):
+        entries = but(without(both, *gone), "results requirements 0 verdict", verdict)
+        (accept if verdict == "refuted" else judged)(f"without {gone}", entries)
+    accept("undecided", undecided)
+
+
+def kept_apart() -> None:
+    """Balls of radius 5/4: 1/4 · 5/4 + 5/16 = 5/8 is kept, in the ball of a stance where just that is left too."""
+    d = apart()
+    for line in d.proof:
+        line["uses"] = [n if n != 11 else 4 if line["proves"].startswith("left") else 9 for n in line["uses"]]
+    proof = d.proof
+    balls = {"rule": "graph-balls", "proves": "invariant", "uses": [4, 9, 25, 28], "witness": {}, "concludes": {}}
+    order = [n for n in range(1, 39) if n not in (11, 18, 29, 30, 31, 32, 33, 34, 5, 10)]
+    number = {old: new for new, old in enumerate(order, 1)}
+    lines = [{**proof[n - 1], "uses": [number[u] for u in proof[n - 1]["uses"]]} for n in order]
+    good = but(d.found("smaller ball", [("settles", "undecided")]), "proof", [*lines, {**balls, "uses": [number[n] for n in (4, 9, 25, 28)]}])
+    accept("balls by split", good)
+    last = len(lines) + 1
+    for name, old, reason in (("by slope", [4, 9, 14, 17], ""), ("by one of each", [4, 9, 14, 28], "rests on"), ("by one of each, the other way", [4, 9, 25, 17], "rests on")):
+        entries = but(good, f"proof {last - 1} uses", [number[n] for n in old])
+        if reason:
+            reject(f"balls {name}", entries, f"proof line {last}", reason)
+        else:
+            accept(f"balls {name}", entries)
+
+
 accept("one map for every step", BASE)
 in_regions()
+told_apart()
+kept_apart()
 what_is_kept()
 two_states()
 not_kept()
