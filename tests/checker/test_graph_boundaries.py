@@ -716,7 +716,7 @@ def told_apart() -> None:
     plain = but(good, "claim text", good["claim"]["text"].replace('correction = ["f"]', ""))
     reject("no correction is named", plain, "proof line 23", "split-slope[x,x] is no obligation of this claim")
     # without the turn 1 + 3/4 = 7/4; where it is of the stance before that counts
-    for n, mirrors in enumerate((BOTH[:1] + ("",), ("", BOTH[1]))):
+    for n, mirrors in enumerate(((*BOTH[:1], ""), ("", BOTH[1]))):
         reject(f"not turned, {n}", apart(mirrors=mirrors).found("region", [("settles", "proved")]), f"proof line {26 if n == 0 else 23}", leaf)
     # of a comparison entries of one route alone
     compared = but(good, "proof 33 concludes left:x", "39/220")
