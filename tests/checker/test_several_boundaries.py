@@ -328,11 +328,10 @@ def told_apart() -> None:
     # what needs two trajectories to come closer is not for this route, a box that absorbs is
     for uses, reason in (([8, 21], "attracting rests on the invariant set, then a bound"), ([8, 24], "attracting rests on"), ([8, 12], ""), ([8, 15], "")):
         line = {"rule": "attracting", "proves": "attracting", "uses": uses, "witness": {"bits": 0, "trees": ["c"], "rows": ONE, "low": ["-7/20", "-1/5"], "high": ["7/20", "1/5"]}, "concludes": {"x": "7/20", "y": "1/5"}}
-        entries = but(good, "proof", [*good["proof"], line])
         if reason:
-            reject(f"drawn in, {uses}", entries, "proof line 29", reason)
+            reject(f"drawn in, {uses}", but(good, "proof", [*good["proof"], line]), "proof line 29", reason)
         else:
-            accept(f"drawn in, {uses}", entries)
+            accept(f"drawn in, {uses}", but(without(good, 22, 23, 24), "proof", [*without(good, 22, 23, 24)["proof"], line]))
     for uses, reason in (([8, 20], "a periodic orbit rests on the invariant set, and the gain on it"), ([8, 11], "")):
         entries = but(good, "proof", [*good["proof"], {"rule": "periodic", "proves": "periodic", "uses": uses, "witness": orbit, "concludes": {"x": "0", "y": "0"}}])
         if reason:
