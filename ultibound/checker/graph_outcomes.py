@@ -107,7 +107,8 @@ class StepResults(Results):
         k, e = self.shown or (None, None)
         slopes, rest = OF_ROUTE[route]
         # slopes by the state are those at constant signals only: proofs/stance.md (5)
-        self.gain = Span(self.stretched(slopes), k if k is None or not before.derivation.loose(route) else None)
+        loose = line is not None and before.derivation.loose(route)
+        self.gain = Span(self.stretched(slopes), None if loose else k)
         self.missed = self.stretched("misses")  # what the target itself misses, every route has to allow for
         self.residual = Span(greater(self.missed, self.stretched(rest)), e)
 
