@@ -738,6 +738,18 @@ def told_apart() -> None:
 
 
 @unit
+def where_the_gait_ought_to_lead(checker: Any) -> None:
+    """x - 1/2 keeps the error on the way from 1/4 to -1/4, and on the way back leads 1 astray; to a target of its own no less than 1/2."""
+    text = claim("x - 1/2 - f + p", "x - 1/2 - f + q", ("[-1, 1]", "[-1, 1]"), [], targets=("1/4", "-1/4"), then=('["right", "left"]', '"left"'), top='correction = ["f"]')
+    text = text.replace("[stance.left]", '[define]\nf = "x - target(x)"\n[stance.left]')
+    graph = checker.graph.Graph(checker.statement.read_statement(text, {}, {}))
+    whole = checker.derive.Domain(False, Q(0), (Q(0), Q(0)))
+    for step, name, astray in (("left>right", "p", Q(0)), ("right>left", "q", Q(-1)), ("left>left", "p", Q(-1, 2))):
+        table = checker.jacobians.Table(graph.between[step], "split-residuals", whole, 0, None)
+        assert table.at({name: "1/16"}) == [[(astray + Q(1, 16),) * 2]], step
+
+
+@unit
 def signals_that_follow_a_state(checker: Any) -> None:
     """Slopes of a route at constant signals only are no upper end of a gain; nobody asks for those of a route that is not shown."""
     line = checker.theorems.Line("split", "split", (1,), {"gain": Q(1, 2), "residual": Q(1)}, part="a>b")
