@@ -20,13 +20,11 @@ from typing import Any
 
 import pytest
 
-import ultibound.checker
 from tests.conftest import proved
+from tests.remembered import lines_checked_once
 from tests.stances import GAITS, HEIGHT, LIBRARY, PUSHING, stance
 from ultibound.checker import Verdict, check, verified
 from ultibound.checker.document import canonical, digest
-from ultibound.checker.rules import Line, Proof, Rejected
-from ultibound.checker.statement import Statement
 from ultibound.claim import parse_claim
 from ultibound.prove import Attempt
 
@@ -272,50 +270,8 @@ def sample(name: str) -> dict[str, Any]:
 
 
 @pytest.fixture(scope="module", autouse=True)
-def lines_checked_once() -> Iterator[None]:
-    """A claim is read once, and lines after exactly the same claim and lines are not verified anew: only what follows
-    a change is."""
-    known: dict[str, tuple[Line | Rejected, int]] = {}
-    claims: dict[str, Statement] = {}
-    names: dict[int, str] = {}  # of claims that are kept
-    real, reading = Proof.add, ultibound.checker.read_statement
-
-    def read(text: str, settings: dict[str, str], files: dict[str, str]) -> Statement:
-        key = json.dumps([text, settings, files])
-        if key not in claims:
-            claims[key] = reading(text, settings, files)
-            names[id(claims[key])] = key
-        return claims[key]
-
-    def add(proof: Proof, raw: Any) -> None:
-        if not proof.lines:
-            statement = proof.derivation.statement if proof.graph is None else proof.graph.statement
-            claim = names.get(id(statement)) or repr(statement)
-            proof.history = hashlib.sha256(claim.encode())  # type: ignore[attr-defined]  # a note of the test's own
-        digest_ = getattr(proof, "history", None)
-        if digest_ is None:  # lines in the making
-            real(proof, raw)
-            return
-        digest_.update(repr(raw).encode())
-        key = digest_.hexdigest()
-        if key not in known:
-            before = proof.leaves
-            try:
-                real(proof, raw)
-            except Rejected as why:
-                known[key] = why, 0
-                raise
-            known[key] = proof.lines[len(proof.lines)], proof.leaves - before
-            return
-        found, leaves = known[key]
-        if isinstance(found, Rejected):
-            raise Rejected(*found.args)
-        proof.lines[len(proof.lines) + 1] = found
-        proof.leaves += leaves
-
-    with pytest.MonkeyPatch.context() as patch:
-        patch.setattr(Proof, "add", add)
-        patch.setattr(ultibound.checker, "read_statement", read)
+def lines_are_checked_once() -> Iterator[None]:
+    with lines_checked_once():
         yield
 
 

@@ -6,7 +6,7 @@ less of it is refused.
 
 from __future__ import annotations
 
-from collections.abc import Sequence
+from collections.abc import Iterator, Sequence
 from fractions import Fraction as Q
 from types import SimpleNamespace
 from typing import Any
@@ -15,6 +15,7 @@ import pytest
 
 import ultibound.checker
 from tests.checker.test_boundaries import BASE, GONE, STEP, Draft, Entries, Questions, but, refuses
+from tests.remembered import lines_checked_once
 
 CASES = Questions()
 unit, accept, reject = CASES.unit, CASES.accept, CASES.reject
@@ -642,6 +643,12 @@ of_the_ground()
 in_balls()
 stepping_where()
 # fmt: on
+
+
+@pytest.fixture(scope="module", autouse=True)
+def lines_are_checked_once() -> Iterator[None]:
+    with lines_checked_once():
+        yield
 
 
 @pytest.mark.parametrize("name", CASES)
