@@ -19,7 +19,7 @@ from ultibound.checker.statement import Statement
 def lines_checked_once() -> Iterator[None]:
     """A claim is read once, and lines after exactly the same claim and lines are not verified anew: only what follows
     a change is."""
-    known: dict[str, tuple[Line | Rejected, int]] = {}
+    known: dict[str, tuple[Line | tuple[Any, ...], int]] = {}
     claims: dict[str, Statement] = {}
     names: dict[int, str] = {}  # of claims that are kept
     real, reading = Proof.add, ultibound.checker.read_statement
@@ -47,13 +47,13 @@ def lines_checked_once() -> Iterator[None]:
             try:
                 real(proof, raw)
             except Rejected as why:
-                known[key] = why, 0
+                known[key] = why.args, 0  # itself it would keep all that its traceback names
                 raise
             known[key] = proof.lines[len(proof.lines)], proof.leaves - before
             return
         found, leaves = known[key]
-        if isinstance(found, Rejected):
-            raise Rejected(*found.args)
+        if isinstance(found, tuple):
+            raise Rejected(*found)
         proof.lines[len(proof.lines) + 1] = found
         proof.leaves += leaves
 

@@ -325,13 +325,23 @@ def spoiled(entries: dict[str, Any], change: Callable[[dict[str, Any]], None]) -
     return changed
 
 
+def with_line(entries: dict[str, Any], number: int, **changes: Any) -> dict[str, Any]:
+    """A proof one of whose lines, counted from 0, says something else; the others are shared."""
+    proof = list(entries["proof"])
+    proof[number] = {**proof[number], **changes}
+    return {**entries, "proof": proof}
+
+
 COUNTED = count()
 
 
 def judged(entries: dict[str, Any], change: Callable[[dict[str, Any]], None]) -> Verdict:
     """The verdict on a changed certificate, hashes recomputed: of its bytes where nothing but its digest is wrong, and
     now and then; else of its entries, which is all that its bytes are read for."""
-    changed = spoiled(entries, change)
+    return verdict_on(spoiled(entries, change))
+
+
+def verdict_on(changed: dict[str, Any]) -> Verdict:
     data = resealed(changed) if next(COUNTED) % EACH_BYTES == 0 else b""
     rehashed(changed)
     verdict = verified(changed)
@@ -497,11 +507,7 @@ def test_a_line_retargeted_is_rejected(entries: dict[str, Any]) -> None:
                 near += [family[-1], *family[max(0, k - 1) : k + 2]]
             others += set(family if LONG else near) - {mine}
         for name in others:
-
-            def spoil(e: dict[str, Any], number: int = number, name: str = name) -> None:
-                e["proof"][number]["proves"] = name
-
-            verdict = judged(entries, spoil)
+            verdict = verdict_on(with_line(entries, number, proves=name))
             assert verdict.status == "invalid", (number, name)
             assert verdict.place.startswith(("proof", "results")) and verdict.reason, verdict
 
@@ -511,11 +517,7 @@ def test_a_rule_or_use_exchanged_is_rejected(entries: dict[str, Any]) -> None:
         for uses in ([], [number + 1], [0], [True], ["1"], line["uses"] * 2, line["uses"][::-1]):
             if uses == line["uses"] or (line["rule"] == "absorbed" and set(uses) == set(line["uses"])):
                 continue  # which takes any number of bounds, in any order
-
-            def spoil(e: dict[str, Any], number: int = number, uses: Any = uses) -> None:
-                e["proof"][number]["uses"] = uses
-
-            assert judged(entries, spoil).status == "invalid", (number, uses)
+            assert verdict_on(with_line(entries, number, uses=uses)).status == "invalid", (number, uses)
         for rule in (
             "range",
             "point",
@@ -533,11 +535,7 @@ def test_a_rule_or_use_exchanged_is_rejected(entries: dict[str, Any]) -> None:
             "smaller-ball",
         ):
             if rule != line["rule"]:
-
-                def spoil_rule(e: dict[str, Any], number: int = number, rule: str = rule) -> None:
-                    e["proof"][number]["rule"] = rule
-
-                rejected(judged(entries, spoil_rule), "proof line")
+                rejected(verdict_on(with_line(entries, number, rule=rule)), "proof line")
 
 
 def test_lines_about_other_ranges_are_not_mixed() -> None:

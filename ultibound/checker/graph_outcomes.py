@@ -279,10 +279,13 @@ class GraphResults(Results):
         return found if pairs and kept and min(found.values()) >= 0 else None
 
     def count_of(self, levels: Levels, wanted: Levels) -> int | None:
-        pairs = self.pairs()
+        pairs, once = self.pairs(), Levels()
         for n in range(MOST_STEPS // len(pairs)):
             if all(x <= wanted[s] for s, x in levels.items()):
                 return n
+            if levels == once:  # then they go round for ever
+                return None
+            once = levels if n & (n - 1) == 0 else once
             after: Levels = {}
             for (s, t), (k, e) in pairs.items():
                 if s in levels:
