@@ -352,7 +352,7 @@ def too_many_stances(checker: Any) -> None:
 def rounded_up(checker: Any) -> None:
     o = checker.graph_outcomes
     exact, long = Q(1, 3), Q(1, 3**1300)
-    assert o.rounded(exact) == exact and long < o.rounded(long) <= Q(1, 2**160) and o.rounded(Q(1, 2**2000)) > Q(1, 2**2000) and o.rounded(Q(1, 2**1999)) == Q(1, 2**1999)
+    assert o.rounded(exact) == exact and long < o.rounded(long) <= Q(1, 2**160) and o.rounded(Q(1, 2**480)) > Q(1, 2**480) and o.rounded(Q(1, 2**479)) == Q(1, 2**479)
 
 
 # two states, norms of their own: max(|x|, 2|y|) on the left, |2x + y| and |2x − y| on the right, where y is named first

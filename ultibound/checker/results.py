@@ -16,7 +16,7 @@ from .sector import applies
 from .theorems import OWN, PAIRS, Variant, ends, levels, magnitude, movement
 
 MOST_STEPS = 20_000
-LONG, GRAIN = 2000, 2**160  # bits of a denominator beyond which levels are rounded up, and to what
+LONG, GRAIN = 480, 2**160  # bits of a denominator beyond which levels are rounded up, and to what
 
 
 @dataclass(frozen=True)
