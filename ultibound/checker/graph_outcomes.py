@@ -210,7 +210,7 @@ class GraphResults(Results):
             span = self.wide(several, r.state)
             return verdict(span is not None and compared(r.relation, Span(span.lower, None), c), False, span)
         if r.kind == "push":
-            spans = [] if r.during else [x.pushes[r.state] for x in several]
+            spans = [self.pushed_through(x, r.state) if r.during else x.pushes[r.state] for x in several]
             span = least([x for x in spans if x is not None]) if spans and None not in spans else None
             return verdict(span is not None and less(c[1], span.lower), False, span)
         if r.kind == "steps":
@@ -255,6 +255,13 @@ class GraphResults(Results):
         """How far a start may be from the target, of a state or in the norm."""
         spans = [x.radii[state] if state is not None else x.radius for x in several] if self.settled else [None]
         return least([x for x in spans if x is not None]) if None not in spans else None
+
+    def pushed_through(self, x: StanceResults, s: str) -> Span | None:
+        """proofs/stance.md (7): a push during a stance leads into the sets of those that may follow it."""
+        grown = x.grown_to(s)
+        left = [self.each[t].left_for(grown) for before, t in self.graph.steps if before == x.part]
+        known = [y for y in left if y is not None]
+        return Span(min(known), None) if known and len(known) == len(left) else None
 
     def counted(self, several: list[StanceResults], r: Any, c: tuple[Fraction, Fraction]) -> Outcome:
         """proofs/graph.md (6): steps after which a state stays within `to`, from any of these stances."""

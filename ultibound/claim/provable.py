@@ -99,12 +99,11 @@ def not_yet(claim: Claim) -> str | None:
         if low != high:
             return f"metric.weights.{s}: a weight is used exactly; state a rational number"
     for number, r in enumerate(claim.requirements, 1):
-        if several and r.during:
-            return f"require[{number}]: a push during the stance can be proved for a single state only, yet"
-        if r.during and stance.dynamics is not None:
+        if r.during and r.stance is None and stance.dynamics is not None:
             try:
                 o = Obligations(claim)
-                o.growth(Domain("region", Fraction(0), (Fraction(0), Fraction(0))))
+                for s in o.states:
+                    o.growth(Domain("region", Fraction(0), (Fraction(0), Fraction(0))), s, r.state or "")
             except Bad as problem:
                 return f"require[{number}]: {problem}"
         folded, ends = _folded(claim, r)
@@ -137,8 +136,6 @@ def _not_between(claim: Claim) -> str | None:
     if claim.horizon != 1:
         return f"horizon: {claim.horizon}; between stances one step at a time can be proved yet; remove the key"
     for number, r in enumerate(claim.requirements, 1):
-        if r.during:
-            return f"require[{number}]: a push during the stance cannot be proved between stances yet"
         if r.over and r.kind not in RANGED:
             return f"require[{number}].over: ranges for a set and gain of its own cannot be proved between stances yet"
     return None

@@ -97,6 +97,7 @@ class GraphAttempt(Attempt):
             o = x.obligations
             for k in range(1, len(o.motion.positive) + 1 if o.motion is not None else 1):
                 x.ranges.enclose(o.support(k, x.domain), on[s], gap=DECIDED, side=-1)
+            x._growth(x.domain, on[s])
         moves = {s: x._movements() for s, x in each.items()}
         lines: dict[Step, int] = {}
         for (s, t), step in self.steps.items():

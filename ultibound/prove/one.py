@@ -220,9 +220,12 @@ class Attempt:
         return self.writer.theorem("slope", f"slope@{steps}", uses, concludes)
 
     def _growth(self, domain: Domain, on: int) -> None:
-        """How changes within the stance grow, where a push asks for it: proofs/stance.md (6)."""
-        if any(r.during for r in self.claim.requirements):
-            self.ranges.enclose(self.obligations.growth(domain), on, magnitude=True)
+        """How pushes within the stance grow, where they are asked for: proofs/stance.md (6)."""
+        o, several = self.obligations, len(self.obligations.states) > 1
+        asked = [r for n, r in enumerate(self.claim.requirements, 1) if n == self.variant or not self.variant]
+        for s in dict.fromkeys(r.state for r in asked if r.during and r.stance is None and not r.over):
+            for x in o.states:
+                self.ranges.enclose(o.growth(domain, x, s or ""), on, magnitude=not several, points=False)
 
     def _flow(self) -> None:
         """The flow of the stance over all that its rates depend on: proofs/trajectory.md."""
