@@ -221,11 +221,14 @@ class Attempt:
 
     def _growth(self, domain: Domain, on: int) -> None:
         """How pushes within the stance grow, where they are asked for: proofs/stance.md (6)."""
-        o, several = self.obligations, len(self.obligations.states) > 1
+        o = self.obligations
         asked = [r for n, r in enumerate(self.claim.requirements, 1) if n == self.variant or not self.variant]
         for s in dict.fromkeys(r.state for r in asked if r.during and r.stance is None and not r.over):
             for x in o.states:
-                self.ranges.enclose(o.growth(domain, x, s or ""), on, magnitude=not several, points=False)
+                growth = o.growth(domain, x, s or "")
+                rough = self.ranges.search(growth, True, COARSE)
+                floor = self.gap * max(abs(rough.upper), abs(rough.lower))  # either end is as close as the larger needs
+                self.ranges.enclose(growth, on, points=False, floor=floor)
 
     def _flow(self) -> None:
         """The flow of the stance over all that its rates depend on: proofs/trajectory.md."""
