@@ -86,6 +86,11 @@ class Proof:
     graph: Graph | None = None  # of named stances
     graphs: dict[Variant, Graph] = field(default_factory=dict)  # and over the ranges of one requirement
 
+    @property
+    def statement(self) -> Statement:
+        """The claim."""
+        return self.derivation.statement if self.graph is None else self.graph.statement
+
     def about(self, variant: Variant, part: str = "") -> Derivation:
         """What the claim asks, or what it asks over a piece of gains or the ranges of one requirement, or of a stance
         or a step."""
@@ -106,7 +111,7 @@ class Proof:
         if variant.piece:
             raise Unprovable("pieces of gains are not known between stances")
         if variant not in self.graphs:
-            self.graphs[variant] = Graph(of_ranges(self.graph.statement, variant.over))
+            self.graphs[variant] = Graph(of_ranges(self.statement, variant.over))
         return self.graphs[variant]
 
     def piece(self, number: int) -> Piece:
