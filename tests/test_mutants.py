@@ -93,7 +93,8 @@ def batteries(copies: Copies) -> dict[str, Battery]:
     several_cases = {f"several: {n}": q for n, q in test_several_boundaries.CASES.items()}
     graph_cases = {f"graph: {n}": q for n, q in test_graph_boundaries.CASES.items()}
     gain_cases = {f"gains: {n}": q for n, q in test_gains_boundaries.CASES.items()}
-    more = several_cases | graph_cases | horizon_cases | squares_cases | gain_cases
+    attracting_cases = {f"attracting: {n}": q for n, q in test_attracting_boundaries.CASES.items()}
+    more = several_cases | graph_cases | horizon_cases | squares_cases | gain_cases | attracting_cases
     proofs = Battery(test_boundaries.CASES | stance_cases | more)
     of_norms, of_reading = dict.fromkeys(NORMS, norms), dict.fromkeys(READING, reading)
     of_several = dict.fromkeys(SEVERAL, several) | dict.fromkeys(GRAPHS, graphs)
