@@ -405,7 +405,7 @@ class Results:
 
     def pushed_within(self, r: Any, c: tuple[Fraction, Fraction]) -> Outcome:
         """What is left of the radius, over the growth of a change until touchdown: proofs/stance.md (6)."""
-        line, least = self.one("range", f"growth[{self.state}]"), None
+        line, least = self.one("range", f"growth[{self.state},{self.state}]"), None
         if line is not None and line.domain == self.domain and self.push is not None and self.push.lower is not None:
             least = self.push.lower / magnitude(line)
         # a change right before touchdown grows no more: what would lead an orbit out does so within the stance too
