@@ -15,8 +15,9 @@ from .grammar import constant
 from .horizon import onward, together
 from .matrices import Metric
 from .model import Quantity, Range, Requirement, Statement
-from .motion import PHASE, Motion, copy, grown, landed, motion, supported
+from .motion import PHASE, Motion, copy, landed, motion, supported
 from .names import Names, mentioned
+from .pushes import grown
 from .ranges import Ends
 from .sector import applies, of_sector
 from .signals import excess, followed, instant
@@ -169,7 +170,7 @@ class Derivation:
 
     def meaning(self, name: str, domain: Domain | None) -> Meaning:
         """The obligation of that name; the set is needed where the state runs through it."""
-        kinds = "target|image|target-miss|target-slope|slope|split-slope|split-residual"
+        kinds = "target|image|target-miss|target-slope|slope|split-slope|split-residual|growth"
         found = re.fullmatch(rf"({kinds})(@[^\[]+)?\[([^,]+)(?:,([^,]+))?\]", name)
         kind, after, s, by = found.groups() if found else ("", None, self.state, None)
         if s not in self.states or (after is not None and kind not in ("target-miss", "slope")):
@@ -198,6 +199,10 @@ class Derivation:
             return self.split_slope(domain, s, by)
         if kind == "split-residual" and by is None and self.statement.correction:
             return self.split_residual(domain, s)
+        if kind == "growth" and by in self.states and self.motion is not None:
+            bound, given = self.through(domain, {})
+            phase = self.terms.put("variable", (), PHASE)
+            return self.over(grown(self.names(bound), self.motion, s, by, phase), "", given, True)
         if len(self.states) == 1 and (one := self.of_one(name, domain)) is not None:
             return one
         support = re.fullmatch(r"support\[([1-9][0-9]{0,3})\]", name)
@@ -212,7 +217,7 @@ class Derivation:
         raise Unprovable(f"{name} is no obligation of this claim")
 
     def of_one(self, name: str, domain: Domain) -> Meaning | None:
-        """Obligations of routes and pushes that are known for a single state only."""
+        """Obligations of routes that are known for a single state only."""
         s = self.state
         courses = re.fullmatch(r"(split-)?signal-slope\[([1-9][0-9]?)\]", name)
         if (
@@ -227,10 +232,6 @@ class Derivation:
             return self.shell(domain, int(shell[1]))
         if name == f"line[{s}]" and domain.radii:
             return self.line(domain)
-        if name == f"growth[{s}]" and self.motion is not None:
-            bound, given = self.through(domain, {})
-            phase = self.terms.put("variable", (), PHASE)
-            return self.over(grown(self.names(bound), self.motion, s, phase), "", given, True)
         return None
 
     def under_any_course(self, domain: Domain, parts: int, split: bool) -> Meaning:

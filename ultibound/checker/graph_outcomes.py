@@ -28,7 +28,7 @@ from .results import (
     verdict,
 )
 from .rules import Line, Proof, Rejected
-from .theorems import OWN
+from .theorems import OWN, Variant
 
 ROUNDS = 400  # steps for which what is attained on every step is added up
 Levels = dict[str, Fraction]  # an error in the norm of each stance
@@ -37,8 +37,8 @@ Levels = dict[str, Fraction]  # an error in the norm of each stance
 class StanceResults(SeveralResults):
     """One stance: its set and norm, and what all stances together prove of its states."""
 
-    def __init__(self, proof: Proof, graph: Graph, name: str, kept: dict[str, Domain] | None) -> None:
-        self.proof, self.variant, self.part, self.needed = proof, OWN, name, set[int]()
+    def __init__(self, whole: GraphResults, graph: Graph, name: str, kept: dict[str, Domain] | None) -> None:
+        self.proof, self.variant, self.part, self.needed = whole.proof, whole.variant, name, set[int]()
         self.derivation = graph.stances[name]
         self.statement, self.states = self.derivation.statement, self.derivation.states
         self.state, self.any = self.states[0], self.statement.shrink
@@ -98,8 +98,9 @@ class StanceResults(SeveralResults):
 class StepResults(Results):
     """Gain and residual of one step by a route, proved and surely taken: proofs/graph.md (2), (7)."""
 
-    def __init__(self, proof: Proof, before: StanceResults, after: StanceResults, route: str) -> None:
-        self.proof, self.variant, self.part, self.needed = proof, OWN, f"{before.part}>{after.part}", set[int]()
+    def __init__(self, before: StanceResults, after: StanceResults, route: str) -> None:
+        self.proof, self.variant = before.proof, before.variant
+        self.part, self.needed = f"{before.part}>{after.part}", set[int]()
         self.before, line = before, self.one(route, route)
         self.shown = None if line is None else (line.concludes["gain"], line.concludes["residual"])
         if line is not None and (line.domain != before.domain or line.metric != after.metric):
@@ -121,15 +122,16 @@ class StepResults(Results):
 class GraphResults(Results):
     """Everything `results` may claim of a claim of stances."""
 
-    def __init__(self, proof: Proof) -> None:
-        if proof.graph is None:
+    def __init__(self, proof: Proof, variant: Variant = OWN) -> None:
+        graph = proof.stanced(variant)
+        if graph is None:
             raise Rejected("no stances")
-        self.proof, self.graph, self.variant, self.needed = proof, proof.graph, OWN, set[int]()
+        self.proof, self.graph, self.variant, self.needed = proof, graph, variant, set[int]()
         self.derivation, self.statement = self.graph.first, self.graph.statement
         self.states, self.any = self.derivation.states, self.statement.shrink
         invariant = self.one("graph-regions", "invariant") or self.one("graph-balls", "invariant")
         kept = None if invariant is None else invariant.domains
-        self.each = {name: StanceResults(proof, self.graph, name, kept) for name in self.graph.stances}
+        self.each = {name: StanceResults(self, self.graph, name, kept) for name in self.graph.stances}
         self.settled = invariant is not None and all(x.lasts for x in self.each.values())
         self.kind, self.whole = self.set_of(invariant if self.settled else None)
         # smaller balls that are not kept, or a stance that is not shown to last, are no sets to speak of
@@ -150,7 +152,8 @@ class GraphResults(Results):
         self.reported, self.sharp, self.best, self.push = self.chosen(), None, None, None
         route = self.routes.get(self.reported, Route())
         self.gain, self.residual, self.bound = route.gain, route.residual, route.bound
-        self.requirements = [self.required(n, r) for n, r in enumerate(self.statement.requirements, 1)]
+        numbered = enumerate(self.statement.requirements, 1)
+        self.requirements = [self.required(n, r) for n, r in numbered if not variant.over or n == variant.over]
         self.needed |= {n for x in self.each.values() for n in x.needed}
         self.needed |= {n for steps in self.onward.values() for x in steps.values() for n in x.needed}
 
@@ -178,7 +181,7 @@ class GraphResults(Results):
 
     def of_steps(self, route: str) -> dict[tuple[str, str], StepResults]:
         """Every step from a stance to the next, by a route."""
-        return {(s, t): StepResults(self.proof, self.each[s], self.each[t], route) for s, t in self.graph.steps}
+        return {(s, t): StepResults(self.each[s], self.each[t], route) for s, t in self.graph.steps}
 
     def bounded_by(self, route: str) -> dict[str, Span]:
         """proofs/graph.md (4): the bound in the norm of each stance; from below what the steps surely add up to."""
@@ -240,7 +243,7 @@ class GraphResults(Results):
         if r.kind in RANGED:
             return together([x.ranged(number, r) for x in several])
         if r.over:
-            return Outcome("undecided", None)
+            return self.elsewhere(number)
         if r.kind == "settles":
             return self.inside(several)
         c = constant(r.constant, self.statement.values)
@@ -248,7 +251,7 @@ class GraphResults(Results):
             span = self.wide(several, r.state)
             return verdict(span is not None and compared(r.relation, Span(span.lower, None), c), False, span)
         if r.kind == "push":
-            spans = [] if r.during else [x.pushes[r.state] for x in several]
+            spans = [self.pushed_through(x, r.state) if r.during else x.pushes[r.state] for x in several]
             span = least([x for x in spans if x is not None]) if spans and None not in spans else None
             return verdict(span is not None and less(c[1], span.lower), False, span)
         if r.kind == "steps":
@@ -298,6 +301,13 @@ class GraphResults(Results):
         spans = [x.radii[state] if state is not None else x.radius for x in several] if self.settled else [None]
         return least([x for x in spans if x is not None]) if None not in spans else None
 
+    def pushed_through(self, x: StanceResults, s: str) -> Span | None:
+        """proofs/stance.md (7): a push during a stance leads into the sets of those that may follow it."""
+        grown = x.grown_to(s)
+        left = [self.each[t].left_for(grown) for before, t in self.graph.steps if before == x.part]
+        known = [y for y in left if y is not None]
+        return Span(min(known), None) if known and len(known) == len(left) else None
+
     def counted(self, several: list[StanceResults], r: Any, c: tuple[Fraction, Fraction]) -> Outcome:
         """proofs/graph.md (6): steps after which a state stays within `to`, from any of these stances, by any route."""
         start, end = (constant(e, self.statement.values) for e in (r.start, r.end))
@@ -324,10 +334,13 @@ class GraphResults(Results):
         return found if pairs and kept and min(found.values()) >= 0 else None
 
     def count_of(self, levels: Levels, wanted: Levels, route: str) -> int | None:
-        pairs = self.pairs(route)
+        pairs, once = self.pairs(route), Levels()
         for n in range(MOST_STEPS // len(pairs)):
             if all(x <= wanted[s] for s, x in levels.items()):
                 return n
+            if levels == once:  # then they go round for ever
+                return None
+            once = levels if n & (n - 1) == 0 else once
             after: Levels = {}
             for (s, t), (k, e) in pairs.items():
                 if s in levels:
