@@ -71,7 +71,11 @@ def drawn(seed: int) -> Case:
         matrix[s] = np.round(a * strength / max(1e-9, np.abs(a).sum(axis=1).max()) * rng.choice([1, 1, 1.6, 0.4]), 3)
         bend[s], wide[s] = round(rng.uniform(-0.2, 0.2), 2), [round(rng.uniform(1.2, 2.5), 1) for _ in states]
     follow = {s: aim[then[s][0]] for s in names}
+    apart, named = random.Random(seed + 10**6), [f"f{i}" for i in range(n)]  # half of them told apart from a correction
+    told = apart.sample(named, apart.randint(1, n)) if apart.random() < 0.5 else []
+    turned = {s: [x for x in states if apart.random() < 0.4] if told else [] for s in names}
     top = f"format = 1\nshrink = {rng.choice(['true', 'false'])}\n"
+    top += f"correction = {told!r}\nroute = {apart.choice(['best', 'best', 'best', 'split'])!r}\n" if told else ""
     kind = rng.choice(["auto", "auto", "box", "polytope", "ellipsoid"])
     top += f'[metric]\nkind = "{kind}"\n' if n > 1 else ""
     text = top + "[uncertain]\nd = [-0.02, 0.02]\ne = [-0.01, 0.02]\n"
@@ -80,9 +84,17 @@ def drawn(seed: int) -> Case:
         order = rng.sample(range(n), n) if s != "a" else range(n)  # rows of a metric are in the order of the first
         spans = ", ".join(f"{states[i]} = [{aim[s][i] - wide[s][i]:.2f}, {aim[s][i] + wide[s][i]:.2f}]" for i in order)
         goals = ", ".join(f'{states[i]} = "{aim[s][i]} + c*{i + 1}/10"' for i in order)
-        maps = []
+        maps, moved = [], []
         for i in order:
-            sums = " + ".join(f"({matrix[s][i][j]})*({states[j]} - target({states[j]}))" for j in range(n))
+            keeps = (-1 if states[i] in turned[s] else 1) if told else 0
+            less = [matrix[s][i][j] - (keeps if i == j else 0) for j in range(n)]
+            by = " + ".join(f"({less[j]:.3f})*({states[j]} - target({states[j]}))" for j in range(n))
+            moved.append(f'{named[i]} = "{by}"')
+            sums = (
+                f"{keeps}*({states[i]} - target({states[i]})) + {named[i]}"
+                if told
+                else " + ".join(f"({matrix[s][i][j]})*({states[j]} - target({states[j]}))" for j in range(n))
+            )
             curve = {
                 "linear": "0",
                 "smooth": f"{bend[s]}*sin({states[0]})*{states[-1]}/4",
@@ -90,6 +102,7 @@ def drawn(seed: int) -> Case:
             }[shape]
             maps.append(f'{states[i]} = "{follow[s][i]} + {sums} + d + e*{i} + {curve} + c/20"')
         text += f"[stance.{s}]\nthen = {then[s]!r}\nstate = {{ {spans} }}\ntarget = {{ {goals} }}\nnext = {{ {', '.join(maps)} }}\n"
+        text += f"mirror = {turned[s]!r}\ndefine = {{ {', '.join(moved)} }}\n" if told else ""
     asked = [
         "settles",
         *(f"bound({x}) <= 3" for x in states),
@@ -213,17 +226,28 @@ def simulated(case: Case, r: dict[str, Any], rng: np.random.Generator, tally: Ta
                 bias = rng.standard_normal((WALKS, n))
             ahead = np.stack([case.step[stance](x, y) for y in fresh])
             best = np.argmax(np.einsum("kwi,wi->kw", ahead, bias), axis=0)
+            error = x - case.aim[stance](w[:, 2])
             x, w = ahead[best, np.arange(WALKS)], fresh[best, np.arange(WALKS)]
             ranges(case, r, stance, x)
             if case.moving:
                 w = w.copy()
                 w[:, 2] = np.clip(w[:, 2] + rng.choice([-0.01, 0.0, 0.01], WALKS), -0.05, 0.05)
+            if r["set"] is not None:
+                paired(r, stance, after, error, x - case.aim[after](w[:, 2]))
             stance = after
             if not np.isfinite(x).all() or np.abs(x).max() > 1e6:
                 return False, far
             if k >= late:
                 far[stance] = np.maximum(far[stance], np.abs(x - case.aim[stance](w[:, 2])).max(axis=0))
     return bool(max(f.max() for f in far.values()) < 1.0), far
+
+
+def paired(r: dict[str, Any], before: str, after: str, error: Any, next_: Any) -> None:
+    """Every route's gain and residual bound the error after a step, in the norms of both stances."""
+    sizes = [norm_of(r["stances"][s]["metric"], e) for s, e in ((before, error), (after, next_))]
+    for route, pair in r["routes"].items():
+        k, eps = (float(Fraction(pair[x]["upper"])) for x in ("gain", "residual"))
+        assert (sizes[1] <= (k * sizes[0] + eps) * (1 + 1e-7) + 1e-7).all(), (before, after, route)
 
 
 def inside(case: Case, r: dict[str, Any], stance: str, x: Any, c: Any) -> None:

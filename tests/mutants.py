@@ -220,7 +220,7 @@ EQUIVALENT: dict[Key, str] = {
         "a line concludes lower <= upper: where upper is below 0, the magnitude of lower is the larger one",
     ("results", "Results.route", "k >= 1", "k > 1"):
         "a bound is there only if the proved gain is below 1, and what is attained is at most what is proved",
-    ("outcomes", "SeveralResults.of_slope", "k < 1", "k <= 1"):
+    ("outcomes", "SeveralResults.of_route", "k < 1", "k <= 1"):
         "a bound is there only if the proved gain is below 1, and what is attained is at most what is proved",
     ("results", "Results.count", "after >= error", "after > error"): (
         "an error that stands still is given up at the largest number of steps as well"

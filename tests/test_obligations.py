@@ -2,14 +2,17 @@
 
 from __future__ import annotations
 
+import re
 from dataclasses import replace
 from fractions import Fraction
 from pathlib import Path
 
 import pytest
 
+from tests.checker.test_pushes_boundaries import GROWN, UNGROWN
 from tests.corpus import CASES, Case
 from tests.stances import GAITS, PARTS
+from ultibound.checker.calculus import Unprovable
 from ultibound.checker.derive import Derivation
 from ultibound.checker.derive import Domain as CheckerDomain
 from ultibound.checker.graph import graph_of
@@ -17,7 +20,7 @@ from ultibound.checker.matrices import metric
 from ultibound.checker.rules import SHAPES
 from ultibound.checker.statement import read_statement
 from ultibound.checker.theorems import THEOREMS
-from ultibound.claim import parse_claim
+from ultibound.claim import Bad, parse_claim
 from ultibound.claim.obligations import RANGED, Domain, Obligation, Obligations
 from ultibound.claim.provable import not_yet, of_stance
 
@@ -94,8 +97,22 @@ that = "sensitivity(v, x) < 1"
 over = { x = [0, 0.1] }
 """
 GRAPHS.append(Case("moving targets, states in another order", MOVING, True))
+TURNED = MOVING.replace("0.4*v + c", "0.4*v*gait + shift + c").replace('v = "side*', 'v = "shift*x + side*')
+TURNED = TURNED.replace("format = 1", 'format = 1\ncorrection = ["shift", "gait"]')
+TURNED = TURNED.replace(
+    'define = { side = "1" }', 'mirror = ["v"]\ndefine = { side = "1", shift = "c*(v - target(v))", gait = "x*v" }'
+)
+TURNED = TURNED.replace(
+    'define = { side = "-1" }', 'mirror = ["x", "v"]\ndefine = { side = "-1", shift = "0.1*abs(v)", gait = "side*x" }'
+)
+GRAPHS.append(Case("two corrections, states that are turned", TURNED, True))
+SEVERAL["corrections"] = (
+    SEVERAL["a library"]
+    .replace("format = 1", 'format = 1\ncorrection = ["f"]\n[define]\nf = "a*b/9"')
+    .replace('a = "a/2 + u/9"', 'a = "a/2 + u*f/9"')
+)
 for several in SEVERAL:
-    table = {"t.csv": "p,q,u\n0,0,1\n0,1,2\n0.5,0,2\n0.5,1,2\n1,0,1\n1,1,3\n"} if several == "a library" else {}
+    table = {"t.csv": "p,q,u\n0,0,1\n0,1,2\n0.5,0,2\n0.5,1,2\n1,0,1\n1,1,3\n"} if "t.csv" in SEVERAL[several] else {}
     PROVABLE.append(Case(f"several: {several}", SEVERAL[several], True, table))
 
 
@@ -155,8 +172,11 @@ def test_both_lists_mean_the_same(case: Case, ball: bool) -> None:
     if not several:
         listed += [*(o.shell(n, mine, radii) for n in (1, 2)), o.line(mine, Fraction(1, 3))]
     cut = replace(theirs, radii=radii, slope=Fraction(1, 3))
-    if claim.correction and not several:
-        listed += [o.split_slope(mine), o.split_residual(mine)]
+    if claim.correction:
+        listed += [
+            *(o.split_slope(mine, s, x) for s in states for x in states),
+            *(o.split_residual(mine, s) for s in states),
+        ]
     if len(claim.correction) == 1 and claim.horizon == 1 and not several:
         listed += o.sector(mine)
     gates = [(g.op, g.args, g.value if g.op in ("number", "power") else g.name or None) for g in o.graph.gates]
@@ -217,6 +237,29 @@ def test_both_lists_mean_the_same_stance(name: str, horizon: int) -> None:
             same(obligation.root, meaning.root)
 
 
+@pytest.mark.parametrize("text, name", [x[:2] for x in (*GROWN, *UNGROWN)])
+def test_both_lists_mean_the_same_pushes(text: str, name: str) -> None:
+    """What a push of one state grows to in another; both refuse the same."""
+    o, d = Obligations(parse_claim(text, {}, {}, "c")), Derivation(read_statement(text, {}, {}))
+    met = re.fullmatch(r"growth\[(\w),(\w)\]", name)
+    if met is None or not {*met.groups()} <= set(o.states):
+        pytest.skip("no such state")
+    zero, n = (Fraction(0), Fraction(0)), len(o.states)
+    mine, theirs = Domain("region", Fraction(0), zero, targets=(zero,) * n), CheckerDomain(False, Fraction(0), zero)
+    if (text, name) not in [x[:2] for x in GROWN]:
+        with pytest.raises(Bad):
+            o.growth(mine, met[1], met[2])
+        with pytest.raises(Unprovable):
+            d.meaning(name, theirs)
+        return
+    obligation, meaning = o.growth(mine, met[1], met[2]), d.meaning(name, theirs)
+    assert (obligation.name, obligation.by) == (name, meaning.by)
+    gates = [(g.op, g.args, g.value if g.op in ("number", "power") else g.name or None) for g in o.graph.gates]
+    assert spelled_out(gates, obligation.root) == spelled_out(d.terms.all, meaning.root)
+    found = [[(v.name, v.cells, v.inside) for v in x.variables] for x in (obligation, meaning)]
+    assert found[0] == found[1]
+
+
 @pytest.mark.parametrize("case", GRAPHS, ids=lambda c: c.name[:40])
 @pytest.mark.parametrize("ball", [False, True])
 def test_both_lists_mean_the_same_between_stances(case: Case, ball: bool) -> None:
@@ -247,7 +290,12 @@ def test_both_lists_mean_the_same_between_stances(case: Case, ball: bool) -> Non
         ]
         for t in stance.then:
             after = next(s for s in claim.stances if s.name == t)
-            listed += [(g.between[f"{stance.name}>{t}"], o.miss(s, 0, after)) for s in o.states]
+            step = g.between[f"{stance.name}>{t}"]
+            listed += [(step, o.miss(s, 0, after)) for s in o.states]
+            if claim.correction:
+                listed += [(step, o.split_slope(mine, s, x)) for s in o.states for x in o.states]
+                onto = o.stance if t == stance.name else after
+                listed += [(step, o.split_residual(mine, s, onto)) for s in o.states]
         gates = [(x.op, x.args, x.value if x.op in ("number", "power") else x.name or None) for x in o.graph.gates]
         for derivation, obligation in listed:
             meaning = derivation.meaning(obligation.name, theirs)

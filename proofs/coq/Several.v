@@ -61,6 +61,63 @@ Proof.
   - apply functional_extensionality. intro i. unfold subtract. ring.
 Qed.
 
+(** Split: how F departs from its nominal gait N, M e + (F − N), and what N misses where it ought to lead, with the correction on the target. *)
+Definition departs (n : nat) (mirror : matrix) (f nominal : vector -> vector) (before y : vector) : vector :=
+  fun i => times n mirror (subtract y before) i + (f y i - nominal y i).
+Definition kept_by_gait (n : nat) (mirror : matrix) (f nominal : vector -> vector) (before after x : vector) : vector :=
+  fun i => nominal x i - after i - times n mirror (subtract x before) i + (f before i - nominal before i).
+
+(* Split (3): G = M e + F − N, less what it is at the target, plus the next target and the residual r at x: this map is F at x, misses r at the target, and has the Jacobians of G. *)
+Theorem split_apart (n : nat) (mirror : matrix) (f nominal : vector -> vector) (js : matrix -> Prop) (x before after : vector) :
+  let g := departs n mirror f nominal before in let r := kept_by_gait n mirror f nominal before after x in
+  let told y : vector := fun i => g y i - g before i + (r i + after i) in
+  jacobians n g js x before -> told x = f x /\ subtract (told before) after = r /\ jacobians n told js x before.
+Proof.
+  intros g r told [C [cuts D]].
+  assert (Z : forall i, times n mirror (subtract before before) i = 0).
+  { intro i. unfold times, subtract. apply sum_zero. intros; ring. }
+  split; [|split].
+  - apply functional_extensionality. intro i. unfold told, g, r, departs, kept_by_gait. rewrite Z. ring.
+  - apply functional_extensionality. intro i. unfold told, subtract. ring.
+  - split.
+    + intros i Hi y Hy eps He. destruct (C i Hi y Hy eps He) as [d [Hd B]]. exists d. split; trivial. intros z Hz L.
+      specialize (B z Hz L). unfold told.
+      replace (g (on x before z) i - g before i + (r i + after i) - (g (on x before y) i - g before i + (r i + after i)))
+        with (g (on x before z) i - g (on x before y) i) by ring. exact B.
+    + exists cuts. intros t Ht N. destruct (D t Ht N) as [j [J P]]. exists j. split; trivial. intros i Hi. unfold told.
+      replace (times n j (subtract x before) i) with (minus (times n j (subtract x before) i) 0 + 0)
+        by (unfold minus, plus, opp; cbn; ring).
+      apply (is_derive_plus (V := R_NormedModule) (fun t => g (on x before t) i - g before i) (fun _ => r i + after i)).
+      * apply (is_derive_minus (V := R_NormedModule) (fun t => g (on x before t) i) (fun _ => g before i)); [now apply P|].
+        apply (is_derive_const (V := R_NormedModule)).
+      * apply (is_derive_const (V := R_NormedModule)).
+Qed.
+
+(* Split (3): slopes of M e + F − N of at most k from norm to norm, residuals of at most m, movements of at most d: gain k, residual m + d. *)
+Theorem split_step (n m m' : nat) (len len' : vector -> R) (v v' mirror : matrix) (f nominal : vector -> vector)
+  (js : matrix -> Prop) (k miss d : R) (x before after after' : vector) : supported m' len' ->
+  (forall j, js j -> forall e, norm n len' v' (times n j e) <= k * norm n len v e) ->
+  jacobians n (departs n mirror f nominal before) js x before ->
+  norm n len' v' (kept_by_gait n mirror f nominal before after x) <= miss -> norm n len' v' (subtract after after') <= d ->
+  norm n len' v' (subtract (f x) after') <= k * norm n len v (subtract x before) + (miss + d).
+Proof.
+  intros S K J M D. destruct (split_apart n mirror f nominal js x before after J) as [E [T J']]. rewrite <- E.
+  apply (step_pair n m m' len len' v v' (fun y i => departs n mirror f nominal before y i
+    - departs n mirror f nominal before before i + (kept_by_gait n mirror f nominal before after x i + after i))
+    js k miss d x before after after' S K J'); [|exact D]. cbv zeta in T. rewrite T. exact M.
+Qed.
+
+(* How the gait keeps the state at the target alone says nothing: it doubles every error, and the correction takes one of the two away. *)
+Example kept_at_the_target_alone :
+  let F (x : R) := x in let N (x : R) := 2 * x in
+  (forall x, Rabs (x + (F x - N x)) <= 0 * Rabs x) /\ N 0 - 0 + (F 0 - N 0) = 0 /\ ~ (forall x, Rabs (F x) <= 0 * Rabs x + 0).
+Proof.
+  intros F N. unfold F, N. repeat split.
+  - intro x. replace (x + (x - 2 * x)) with 0 by ring. rewrite Rabs_R0. lra.
+  - ring.
+  - intro Q. specialize (Q 1). rewrite Rabs_R1 in Q. lra.
+Qed.
+
 Definition several {W H : Type} (n : nat) (len : vector -> R) (v : matrix) (F : vector -> W -> H -> vector) (inW : W -> Prop)
   (moves : H -> H -> Prop) (target : H -> vector) :=
   Model vector W H F inW moves (fun x h => norm n len v (subtract x (target h))).

@@ -876,11 +876,12 @@ def routes() -> None:
     for several in (1, 5, 6):
         more = "".join(f"u{i} = [0, 1]\n" for i in range(several))
         text = claim(state=f"[-1, 1]\n{more}").replace("[target]", more.replace("[0, 1]", '"0"') + "[target]").replace('v = "0"', 'v = "0"\n' + more.replace("[0, 1]", '"0"'))
-        place, reason = ("proof line 2", "ball rests on metric metric") if several < 6 else ("claim", "only the route slope can be checked for two to 6 states")
+        place, reason = ("proof line 2", "ball rests on metric metric") if several < 6 else ("claim", "only the routes slope and split can be checked for two to 6 states")
         reject(f"{several + 1} states", but(BASE, "claim text", text), place, reason)
-    for top in ('route = "curve"', 'route = "split"\ncorrection = ["f"]'):
+    only = "claim", "only the routes slope and split can be checked for two to 6 states"
+    for top, (place, reason) in (('route = "curve"', only), ('route = "split"\ncorrection = ["f"]', ("proof line 2", "ball rests on metric metric"))):
         text = claim(state="[-1, 1]\nu = [0, 1]", top=top, rest="[define]\nf = 1").replace("[target]", 'u = "u"\n[target]').replace('v = "0"', 'v = "0"\nu = "0"')
-        reject(f"two states, {top}", but(BASE, "claim text", text), "claim", "only the route slope can be checked for two to 6 states")
+        reject(f"two states, {top}", but(BASE, "claim text", text), place, reason)
     reject("a named stance", but(BASE, "claim text", claim(rest=ONE_STANCE)), "proof line 1", "range: not known of all stances together")
     reject("stances", but(BASE, "claim text", claim(rest=TWO_STANCES)), "proof line 1", "range: not known of all stances together")
     running = '[dynamics]\nduration = 1\nstart = { x = 0 }\nrate = { x = 0 }'

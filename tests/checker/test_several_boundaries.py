@@ -51,7 +51,7 @@ class Lines(Draft):
 
     def table(self, proves: str, values: Sequence[str], uses: Sequence[int], rows: Any = ONE, inverse: Any = ONE, trees: Sequence[str] = ("d",)) -> int:
         """`entries`: row by row."""
-        wide = len(rows) if proves == "slopes" else 1
+        wide = len(rows) if proves.endswith("slopes") else 1
         found = both({f"{i // wide + 1},{i % wide + 1}": x for i, x in enumerate(values)})
         return self.line("entries", proves, uses, {"beside": [], "bits": 0, "trees": list(trees), "rows": rows, "inverse": inverse}, **found)
 
@@ -282,6 +282,112 @@ def corrections() -> None:
 
 
 corrections()
+
+# told apart from two corrections: x + y/4 + p and x/4 + y + q without them, and 1 − 1/2, 1 − 3/4 of what they leave
+
+TOLD = ("x + y/4 - f + p", "y + x/4 - h + q")
+CORRECTED, TWO_NAMES = 'correction = ["f", "h"]\n', '\n[define]\nf = "x/2"\nh = "3*y/4"\n'
+
+
+def apart(asked: Sequence[str] = ("settles",), top: str = "", names: str = TWO_NAMES, rest: str = STATED) -> Lines:
+    """Lines: 1 metric, 2 3 targets, 4 point, 5 ball, 6 7 images, 8 invariant, 9 10 matrices, 11 pair, 12 bound, 13 14 entries, 15 comparison, 16 17 stretches of slope,
+    18 19 matrices, 20 pair, 21 bound, 22 23 entries, 24 comparison, 25 26 stretches of split, 27 28 products of both."""
+    d = in_region(Lines(claim(*TOLD, uncertain=NOISE, asked=asked, rest=rest + names, top=top + CORRECTED)))
+    d.proof.pop()
+    d.proof[11]["concludes"]["bound"], d.proof[14]["concludes"]["y"] = "5/4", "1"  # more than they might say: split says as much, and less
+    for line in d.proof:
+        if "trees" in line["witness"]:
+            line["witness"]["trees"] = ["c"]
+    d.matrix("split-slopes", "1/2", [8], ["c"])
+    d.matrix("split-residuals", "5/8", [8], ["c"])
+    d.theorem("split", "split", [18, 19], gain="1/2", residual="5/8")
+    d.theorem("ultimate-bound", "bound[split]", [8, 20], bound="5/4")
+    d.table("split-slopes", ["1/2", "0", "0", "1/4"], [8], trees=("c",))
+    d.table("split-residuals", ["3/8", "5/16"], [8], trees=("c",))
+    d.line("componentwise", "split-componentwise", [8, 22, 23], {"about": ["0", "0"], "p": ["1", "1"], "b": ["3/4", "5/12"]}, x="3/4", y="5/12")
+    d.stretch("split-slopes", {"x": "0", "y": "0"}, ["1", "0"], "1/2", [8])
+    d.stretch("split-residuals", {"x": "1", "y": "0", "p": "0", "q": "1/16"}, ["1"], "5/8", [8])
+    nothing = {"x": "0", "y": "0"}
+    d.line("product", "slopes", [8], {"bits": 0, "points": [{**nothing, "p": "0", "q": "0"}], "power": 1}, lower="3/8")
+    d.line("product", "split-slopes", [8], {"bits": 0, "points": [nothing], "power": 1}, lower="3/8")
+    return d
+
+
+def told(d: Lines, asked: Sequence[tuple[str, str]], route: str = "slope", metric: dict[str, Any] = BOX) -> Entries:
+    entries = d.found("region", asked, metric)
+    return but(entries, "results route", route, "results routes", {x: {"gain": None, "residual": None, "bound": None} for x in ("slope", "split") if any(line["rule"] == x for line in d.proof)})
+
+
+TOLD_APART = [
+    ("settles", "proved"), ("gain <= 1/2", "proved"), ("gain < 1/2", "refuted"), (f"gain <= 1/2 - 1{STEP}", "refuted"), ("residual <= 1/8", "proved"), ("residual < 1/8", "refuted"), ("bound <= 5/4", "proved"), ("bound < 5/4", "undecided"), ("bound(x) <= 7/20", "proved"), ("bound(x) < 7/20", "undecided"), ("bound(y) <= 5/12", "proved"), ("bound(y) < 5/12", "undecided"),
+    # by slope 7/8, 25/32; by split 9/8: from 1 no count at all
+    ("steps(x, 1, 7/8) <= 1", "proved"), ("steps(x, 1, 25/32) <= 2", "proved"), (f"steps(x, 1, 25/32 - 1{STEP}) <= 2", "undecided"),
+]
+ASKED_FOR = [
+    ("settles", "proved"), ("gain <= 1/2", "proved"), ("gain < 1/2", "refuted"), ("residual <= 5/8", "proved"), ("residual < 5/8", "undecided"), ("residual < 1/8", "refuted"), ("residual <= 1/8", "undecided"), ("bound <= 5/4", "proved"), ("bound < 5/4", "undecided"), ("bound(x) <= 7/20", "proved"),
+]
+APART_FIGURES: dict[str, tuple[str | None, str | None]] = {
+    "gain": ("3/4", "3/4"), "residual": ("1/8", "1/8"), "bound": ("1/2", "5/4"), "routes split gain": ("1/2", "1/2"), "routes split residual": ("5/8", "5/8"), "routes split bound": ("5/4", "5/4"), "routes slope gain": ("3/4", "3/4"), "states x bound": (None, "7/20"), "states y bound": (None, "5/12"),
+}
+
+
+def told_apart() -> None:
+    judged("told apart", told(apart([that for that, _ in TOLD_APART]), TOLD_APART))
+    judged("split is asked for", told(apart([that for that, _ in ASKED_FOR], top='route = "split"\n'), ASKED_FOR, "split"))
+    good = told(apart(), [("settles", "proved")])
+    exact("told apart", good, APART_FIGURES)
+    for name, change in (("the other route", ("results route", "split")), ("a route less", ("results routes split", GONE))):
+        reject(f"told apart: {name}", but(good, *change), "results", "results.route")
+    leaf, short, far = "a leaf is not shown to stay within the norm", "gain or residual: less than what the lines used show", "the direction is not shown to be stretched by so much"
+    tight("told apart", good, {
+        18: (("norm", -1, f"split-slopes: {leaf}"),), 19: (("norm", -1, f"split-residuals: {leaf}"),), 20: (("gain", -1, short), ("residual", -1, short)), 21: (("bound", -1, "bound: less than residual / (1 - gain)"),), 22: (("1,1", -1, "entry 1,1 is less"), ("2,2", -1, "entry 2,2 is less")),
+        23: (("1,1", -1, "entry 1,1 is less"), ("2,1", -1, "entry 2,1 is less")), 24: (("x", -1, "x: less than what the comparison shows"), ("y", -1, "y: less than what")), 25: (("lower", 1, far),), 26: (("lower", 1, far),), 27: (("lower", 1, "the trace is not shown"),), 28: (("lower", 1, "the trace is not shown"),),
+    })
+    orbit = {"bits": 0, "held": {}, "start": {"x": "0", "y": "0"}, "steps": [{"p": "0", "q": "0"}]}
+    for number, changes, reason in (
+        (20, ("uses", [9, 19]), "split rests on matrix split-slopes, matrix split-residuals"), (20, ("uses", [18, 10]), "split rests on"), (20, ("uses", [18]), "split rests on"), (20, ("rule", "slope"), "slope rests on"), (20, ("proves", "slope"), "split rests on"), (20, ("rule", "slope", "proves", "slope"), "slope rests on matrix slopes"), (20, ("proves", "split@1"), "split rests on"),
+        (21, ("proves", "bound[slope]"), "gain and residual of another route"), (21, ("uses", [8, 11]), "gain and residual of another route"), (24, ("proves", "componentwise"), "componentwise rests on entries slopes, entries misses"), (24, ("uses", [8, 22, 14]), "split-componentwise rests on"), (24, ("uses", [8, 13, 23]), "split-componentwise rests on"), (24, ("proves", "split"), "componentwise rests on the invariant set"),
+        (18, ("proves", "split-slopes@1"), "after fewer steps"), (18, ("proves", "split-slope"), "a matrix proves slopes or misses"), (28, ("proves", "split-residuals"), "a product of slopes rests on"), (28, ("proves", "misses"), "a product of slopes rests on"), (28, ("proves", "split-slopes@1"), "a product of slopes rests on"),
+    ):
+        paths = [x if k % 2 else f"proof {number - 1} {x}" for k, x in enumerate(changes)]
+        reject(f"told apart: {number} {changes}", but(good, *paths), f"proof line {number}", reason)
+    plain = but(good, "claim text", good["claim"]["text"].replace(CORRECTED, ""))
+    reject("told apart: no correction", plain, "proof line 18", "split-slope[x,x] is no obligation of this claim")
+    # what needs two trajectories to come closer is not for this route, a box that absorbs is
+    for uses, reason in (([8, 21], "attracting rests on the invariant set, then a bound"), ([8, 24], "attracting rests on"), ([8, 12], ""), ([8, 15], "")):
+        line = {"rule": "attracting", "proves": "attracting", "uses": uses, "witness": {"bits": 0, "trees": ["c"], "rows": ONE, "low": ["-7/20", "-1/5"], "high": ["7/20", "1/5"]}, "concludes": {"x": "7/20", "y": "1/5"}}
+        if reason:
+            reject(f"drawn in, {uses}", but(good, "proof", [*good["proof"], line]), "proof line 29", reason)
+        else:
+            accept(f"drawn in, {uses}", but(without(good, 22, 23, 24), "proof", [*without(good, 22, 23, 24)["proof"], line]))
+    for uses, reason in (([8, 20], "a periodic orbit rests on the invariant set, and the gain on it"), ([8, 11], "")):
+        entries = but(good, "proof", [*good["proof"], {"rule": "periodic", "proves": "periodic", "uses": uses, "witness": orbit, "concludes": {"x": "0", "y": "0"}}])
+        if reason:
+            reject(f"an orbit, {uses}", entries, "proof line 29", reason)
+        else:
+            accept(f"an orbit, {uses}", entries)
+    # 5/4 of the norm, 3/4 and 5/12 by comparison, each above what it is of
+    for uses, x, y, reason in (([24], hair("3/4", 1), hair("5/12", 1), ""), ([24], "3/4", "1/2", "x: no more than the bounds show"), ([24], "4/5", "5/12", "y: no more than"), ([21], "1", "1", "x: no more than the bounds show")):
+        lines = [{"rule": "absorbed", "proves": "absorbed", "uses": uses, "witness": {}, "concludes": {"x": x, "y": y}}, *({**good["proof"][n - 1], "uses": [29]} for n in (13,)), {**good["proof"][14], "uses": [29, 30, 14], "concludes": {"x": "7/20", "y": "1/5"}}]
+        entries = but(good, "proof", [*good["proof"], *lines])
+        if reason:
+            reject(f"absorbed by {uses} in {x}, {y}", entries, "proof line 29", reason)
+        else:
+            accept(f"absorbed by {uses} in {x}, {y}", entries)
+    # refuted where both routes are shown not to be below: in this norm, or in any
+    asked = [("gain < 1/2", "refuted"), ("gain < 3/8", "refuted")]
+    both_ = told(apart([that for that, _ in asked]), asked)
+    accept("refuted by both", both_)
+    free = told(apart([that for that, _ in asked], rest=""), [("gain < 1/2", "undecided"), asked[1]])
+    judged("refuted in any norm", free)
+    for gone, first, second in (((25,), "undecided", "refuted"), ((16,), "undecided", "refuted"), ((25, 28), "undecided", "undecided"), ((16, 27), "undecided", "undecided"), ((27, 28), "refuted", "refuted"), ((16, 28), "undecided", "refuted")):
+        judged(f"without {gone}", but(without(both_, *gone), "results requirements 0 verdict", first, "results requirements 1 verdict", second))
+    for gone in ((27,), (28,)):
+        judged(f"in any norm without {gone}", but(without(free, *gone), "results requirements 1 verdict", "undecided"))
+    one = 'route = "split"\n'
+    for gone, first in (((16, 27), "refuted"), ((25, 28), "undecided")):
+        entries = told(apart([that for that, _ in asked], top=one), [("gain < 1/2", first), ("gain < 3/8", first)], "split")
+        judged(f"split alone, without {gone}", without(entries, *gone))
 
 
 @unit
@@ -860,7 +966,7 @@ def smaller_balls() -> None:
 def refused_rules() -> None:
     """What is known of several states only, or of a single one."""
     proof = PLAIN["proof"]
-    for rule, witness, concludes in (("split", {}, {"gain": "1", "residual": "1"}), ("curve", {}, {"gain": "1", "residual": "1", "sharp": "1"}), ("shells", {"radii": ["1"], "slope": "0"}, {}), ("orbit", {"bits": 0, "held": {}, "start": [], "steps": []}, {"distance": "0", "highest": "0", "lowest": "0"}),
+    for rule, witness, concludes in (("sector", {}, {"gain": "1", "residual": "1"}), ("curve", {}, {"gain": "1", "residual": "1", "sharp": "1"}), ("shells", {"radii": ["1"], "slope": "0"}, {}), ("orbit", {"bits": 0, "held": {}, "start": [], "steps": []}, {"distance": "0", "highest": "0", "lowest": "0"}),
                                      ("path", {"bits": 0, "held": {}, "start": [], "steps": []}, {"distance": "0", "from": "0", "steps": "1"})):
         reject(f"{rule} of two states", but(PLAIN, "proof 17", {"rule": rule, "proves": rule, "uses": [8], "witness": witness, "concludes": concludes}), "proof line 18", f"{rule}: known for a single state only")
     accept("a single state", BASE)
@@ -868,7 +974,7 @@ def refused_rules() -> None:
         line = {**proof[n - 1], "uses": []}
         reject(f"{line['rule']} of a single state", but(BASE, "proof 0", line), "proof line 1", f"{line['rule']}: the claim has a single state")
     reject("invariant-rows of a single state", but(BASE, "proof 3 rule", "invariant-rows"), "proof line 4", "invariant-rows: the claim has a single state")
-    for name in ("shell[1]", "line[x]", "growth[x]", "split-slope[x,x]", "split-residual[x]", "slope[x]", "slope[x,z]", "target[z]", "target-slope[x,c]", "support[1]", "image[z]"):
+    for name in ("shell[1]", "line[x]", "growth[x]", "growth[x,x]", "split-slope[x,x]", "split-residual[x]", "slope[x]", "slope[x,z]", "target[z]", "target-slope[x,c]", "support[1]", "image[z]"):
         line = {"rule": "range", "proves": name, "uses": [8], "witness": {"bits": 0, "trees": ["d"]}, "concludes": {"lower": "0", "upper": "0"}}
         reject(f"{name} of two states", but(PLAIN, "proof 17", line), "proof line 18", f"{name} is no obligation of this claim")
 
@@ -968,12 +1074,12 @@ def over_ranges() -> None:
             reject(f"over: line {n} rests on the claim's own", own, f"proof line {n}", "uses: lines about other ranges")
 
 
-def rounding_lines() -> Lines:
+def rounding_lines(asked: Sequence[str] = ("settles",)) -> Lines:
     """X and Y stand still for a second; their start is the first map. Lines: 1 flow, 2 to 19 as of `region`, 20 support."""
     still = {"cuts": {}, "pieces": ["0", "1"], "degrees": [1, 0], "bits": 24, "cells": [["16777216 0 0 0 0 0 16777216 0"]]}
     assert STILL["degrees"] == still["degrees"]
     rest = STATED + f'\n[dynamics]\nduration = 1\n[dynamics.start]\nX = "{PAIR[0]}"\nY = "{PAIR[1]}"\n[dynamics.rate]\nX = "0*Y"\nY = "0*X"\n'
-    d = Lines(claim("X", "Y", uncertain=NOISE, rest=rest))
+    d = Lines(claim("X", "Y", uncertain=NOISE, rest=rest, asked=asked))
     in_region(d)
     proof = [{"rule": "trajectory", "proves": "flow", "uses": [], "witness": still, "concludes": {"error": "0"}}]
     for line in d.proof:
@@ -1064,6 +1170,7 @@ def units_of_lengths() -> None:
             judged("lengths in a norm a hair smaller", entries)
 
 
+told_apart()
 units_of_lengths()
 smaller_balls()
 other_sets()

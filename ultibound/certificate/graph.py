@@ -8,11 +8,12 @@ from fractions import Fraction
 from typing import Any
 
 from ..checker.graph import across, largest, of_part
+from ..checker.jacobians import OF_COMPARISON, OF_ROUTE
 from ..checker.matrices import Leaf, Matrix, Metric
 from ..checker.rules import Proof, Rejected
 from ..checker.several import moved, movements
-from ..checker.theorems import OWN
-from .lines import upward
+from ..checker.theorems import Variant
+from .lines import Writer, upward
 from .norms import NormWriter, solved, texts
 
 Step = tuple[str, str]
@@ -26,7 +27,7 @@ class StanceWriter(NormWriter):
 
     def __init__(self, proof: Proof, raw: list[dict[str, Any]], part: str) -> None:
         self.proof, self.raw, self.part, self.flow = proof, raw, part, None
-        self.derivation = of_part(proof.graph, OWN, part)
+        self.derivation = of_part(proof.graph, part)
 
 
 class StepWriter(StanceWriter):
@@ -75,8 +76,13 @@ class StepWriter(StanceWriter):
 class GraphWriter(StanceWriter):
     """Lines about all stances together."""
 
-    def bound(self, invariant: int, steps: Mapping[Step, int]) -> int | None:
-        """The bound in the norm of each stance; None where the steps do not contract together."""
+    def adopt(self, other: Writer, variant: Variant, needed: set[int]) -> None:
+        super().adopt(other, variant, needed)
+        if other.proof.graph is not None:
+            self.proof.graphs[variant] = other.proof.graph
+
+    def bound(self, invariant: int, steps: Mapping[Step, int], route: str) -> int | None:
+        """The bound by a route in the norm of each stance; None where the steps do not contract together."""
         pairs = {e: self.proof.lines[n].concludes for e, n in steps.items()}
         k = {e: ((x["gain"],),) for e, x in pairs.items()}
         p = least_above(k, {e: [Fraction(1)] for e in k})
@@ -84,11 +90,13 @@ class GraphWriter(StanceWriter):
         if p is None or b is None:
             return None
         concludes = {s: upward(x[0]) for s, x in b.items()}
-        return self._appended("graph-bound", "bound[slope]", [invariant, *steps.values()], {"p": p, "b": b}, concludes)
+        name = f"bound[{route}]"
+        return self._appended("graph-bound", name, [invariant, *steps.values()], {"p": p, "b": b}, concludes)
 
     def compared(
-        self, invariant: int, tables: Mapping[Step, tuple[int, int]], moves: Sequence[int], bases: Mapping[str, Basis]
-    ) -> int | None:
+        self, invariant: int, tables: Mapping[Step, tuple[int, int]], moves: Sequence[int], bases: Mapping[str, Basis],
+        route: str,
+    ) -> int | None:  # fmt: skip
         """A bound for each state in each stance by comparison; None where the entries do not contract."""
         g, lines = self.proof.graph, self.proof.lines
         if g is None:
@@ -118,7 +126,8 @@ class GraphWriter(StanceWriter):
                 x = sum((abs(x) * y for x, y in zip(row, b[name], strict=True)), Fraction(0))
                 concludes[f"{name}:{s}"] = upward(x)
         uses = [invariant, *(n for pair in tables.values() for n in pair), *moves]
-        return self._appended("graph-componentwise", "componentwise", uses, {"p": p, "b": b}, concludes)
+        (name,) = (x for x, matrices in OF_COMPARISON.items() if matrices == OF_ROUTE[route])
+        return self._appended("graph-componentwise", name, uses, {"p": p, "b": b}, concludes)
 
     def _appended(
         self, rule: str, proves: str, uses: list[int], vectors: Mapping[str, Mapping[str, Sequence[Fraction]]],

@@ -15,7 +15,7 @@ from ..bounding.evaluate import to_float
 from ..checker.courses import nearest
 from ..checker.derive import Ranged
 from ..checker.inequality import Inequality
-from ..checker.jacobians import Table, inside, middle_and_half, named
+from ..checker.jacobians import OF_COMPARISON, Table, inside, middle_and_half, named, sloped
 from ..checker.matrices import Leaf, Matrix, Metric, comparison, dot, norm_over, root
 from ..checker.numerals import decimal_down, decimal_up
 from ..checker.periodic import Round, variables_of
@@ -147,7 +147,7 @@ class NormWriter(Writer):
         step = SLACK
         while step < FAR:
             bound = Fraction(upward(Fraction(near * (1 + step))))
-            found = Inequality(before if proves.startswith("slopes") else None, after, xi, eta, bound)
+            found = Inequality(before if sloped(proves) else None, after, xi, eta, bound)
             if all(found.holds(leaf) for leaf in leaves):
                 return found
             step *= FURTHER
@@ -214,24 +214,26 @@ class NormWriter(Writer):
         middle, half = middle_and_half(table.at(at))
         image = [sum((x * y for x, y in zip(row, vector, strict=True)), Fraction(0)) for row in middle]
         off = [sum((x * abs(y) for x, y in zip(row, vector, strict=True)), Fraction(0)) for row in half]
-        scale = before.most(vector) if proves.startswith("slopes") else abs(vector[0])
+        scale = before.most(vector) if sloped(proves) else abs(vector[0])
         lower = (norm.least(image) - norm.length(off)) / scale
         witness = {"bits": bits, "at": at, "direction": [str(x) for x in vector]}
         return self.append("stretch", proves, self.rests(proves, on), witness, {"lower": downward(lower)})
 
-    def product(self, points: Sequence[dict[str, Fraction]], power: int, bits: int, on: int, wanted: Fraction) -> None:
+    def product(
+        self, proves: str, points: Sequence[dict[str, Fraction]], power: int, bits: int, on: int, wanted: Fraction
+    ) -> None:
         """Jacobians whose product shows a gain of `wanted` or more in any norm: no line where it shows less."""
         domain = self.proof.lines[on].domain
         if domain is None:
             raise ValueError("no set")
-        table = Table(self.derivation, "slopes", domain, bits, self.flows())
+        table = Table(self.derivation, proves, domain, bits, self.flows())
         at = [{v.name: spelled(v, p[v.name]) for v in table.variables} for p in points]
         lower = root_of(traced(table, at, power) / len(self.derivation.states), power * len(at))
         if not lower >= wanted:
             return
-        uses = [on, *([self.flow] if self.flow is not None and self._moves("slopes", on) else [])]
+        uses = [on, *([self.flow] if self.flow is not None and self._moves(proves, on) else [])]
         witness = {"bits": bits, "points": at, "power": power}
-        self.append("product", "slopes", uses, witness, {"lower": decimal_down(lower, DIGITS)})
+        self.append("product", proves, uses, witness, {"lower": decimal_down(lower, DIGITS)})
 
     def periodic(self, start: Sequence[float], held: Mapping[str, Fraction], steps: Sequence[Mapping[str, Fraction]],
                  uses: list[int], bits: int) -> int:  # fmt: skip
@@ -281,7 +283,9 @@ class NormWriter(Writer):
         ]
         concludes = {s: upward(x) for s, x in zip(d.states, bounds, strict=True)}
         witness = {key: [str(x) for x in each] for key, each in (("about", about), ("p", p), ("b", b))}
-        return self.append("componentwise", "componentwise", [invariant, slopes, misses, *moves], witness, concludes)
+        pair = lines[slopes].proves, lines[misses].proves
+        (name,) = (x for x, matrices in OF_COMPARISON.items() if matrices == pair)
+        return self.append("componentwise", name, [invariant, slopes, misses, *moves], witness, concludes)
 
     def _resting(self, slopes: Line, misses: Line) -> list[Fraction]:
         """About where the middle of the map rests, in a basis: any point would do."""

@@ -4,6 +4,7 @@ from __future__ import annotations
 
 from dataclasses import dataclass
 
+from ..checker.jacobians import OF_ROUTE
 from ..checker.results import Outcome, Results
 from ..checker.theorems import Line, Variant
 from ..claim import Claim
@@ -45,9 +46,12 @@ class SeveralRemarks:
             parts.append("interrupted" if self.interrupted else self.why(r))
         lines = self.results.proof.lines
         about = Variant(0, number if r.over else 0)
-        growing = [x for x in lines.values() if (x.rule, x.variant) == ("product", about)]
-        if outcome.verdict == "refuted" and r.kind == "gain" and growing:
-            parts.append(f"whatever the norm: {_grows(growing[0])}")
+        growing = {x.proves: x for x in lines.values() if (x.rule, x.variant) == ("product", about)}
+        routes = [self.claim.route] if self.claim.route in OF_ROUTE else self.results.contracting()
+        asked = {OF_ROUTE[x][0] for x in routes}
+        if outcome.verdict == "refuted" and r.kind == "gain" and asked <= set(growing):
+            slowest = min((growing[x] for x in asked), key=lambda x: x.concludes["lower"])
+            parts.append(f"whatever the norm: {_grows(slowest)}")
         return ("; ".join(p for p in parts if p)[:900] or None), pursue
 
     def why(self, r: Requirement) -> str:
@@ -86,4 +90,5 @@ class SeveralRemarks:
 def _grows(line: Line) -> str:
     """What a product of Jacobians shows, in words."""
     at = "somewhere in the region" if line.on_set else "at the target"
-    return f"Jacobians {at}, one after the other, grow on average by {float(line.concludes['lower']):.7g} a step"
+    what = "Jacobians" if line.proves == "slopes" else "slopes of the correction told apart"
+    return f"{what} {at}, one after the other, grow on average by {float(line.concludes['lower']):.7g} a step"

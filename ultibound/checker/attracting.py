@@ -18,7 +18,7 @@ from .several import gone_through, matrix, moved, movements, numbers
 from .theorems import Line, Quantities, parted
 
 MOST = 20_000  # choices of rows and sides
-BOUNDS = ("ultimate-bound", "componentwise")
+BOUNDS = ("bound[slope]", "componentwise")  # that two trajectories under the same values come closer: polytope.md (3)
 RESTS = "attracting rests on the invariant set, then a bound, then how targets move"
 
 
@@ -48,7 +48,7 @@ def attracting(d: Derivation, proves: str, used: list[Line], witness: dict[str, 
     if proves != "attracting" or [x.proves for x in used[:1]] not in (["invariant"], ["absorbed"]):
         raise Rejected(RESTS)
     wanted = [("range", f"target-slope[{s},{h}]") for s, h in movements(d)]
-    if len(used) < 2 or used[1].rule not in BOUNDS or [(x.rule, x.proves) for x in used[2:]] != wanted:
+    if len(used) < 2 or used[1].proves not in BOUNDS or [(x.rule, x.proves) for x in used[2:]] != wanted:
         raise Rejected(RESTS)
     domain, whole_set = used[0].domain, used[1].domain
     if domain is None or whole_set is None or whole_set not in (domain, domain.of):

@@ -6,7 +6,7 @@ import re
 from dataclasses import dataclass, replace
 from fractions import Fraction
 from functools import partial
-from itertools import pairwise
+from itertools import pairwise, product
 from math import prod
 from typing import Any
 
@@ -15,8 +15,9 @@ from .grammar import constant
 from .horizon import onward, together
 from .matrices import Metric
 from .model import Quantity, Range, Requirement, Statement
-from .motion import PHASE, Motion, copy, grown, landed, motion, supported
+from .motion import PHASE, Motion, copy, landed, motion, supported
 from .names import Names, mentioned
+from .pushes import grown
 from .ranges import Ends
 from .sector import applies, of_sector
 from .signals import excess, followed, instant
@@ -109,8 +110,8 @@ class Derivation:
         if statement.route == "sector" and not applies(statement):
             raise Unprovable("the route sector is known for one state, one step and one correction")
         several = len(stance.states) > 1
-        if several and (statement.route not in ("best", "slope") or len(stance.states) > MOST_STATES):
-            raise Unprovable(f"only the route slope can be checked for two to {MOST_STATES} states")
+        if several and (statement.route not in ("best", "slope", "split") or len(stance.states) > MOST_STATES):
+            raise Unprovable(f"only the routes slope and split can be checked for two to {MOST_STATES} states")
         if not several and any(set(constant(w, statement.values)) != {Fraction(1)} for w in statement.weights.values()):
             raise Unprovable("only the weight 1 can be checked for a single state")
         self.statement, self.stance, self.terms = statement, stance, Terms()
@@ -169,7 +170,8 @@ class Derivation:
 
     def meaning(self, name: str, domain: Domain | None) -> Meaning:
         """The obligation of that name; the set is needed where the state runs through it."""
-        found = re.fullmatch(r"(target|image|target-miss|target-slope|slope)(@[^\[]+)?\[([^,]+)(?:,([^,]+))?\]", name)
+        kinds = "target|image|target-miss|target-slope|slope|split-slope|split-residual|growth"
+        found = re.fullmatch(rf"({kinds})(@[^\[]+)?\[([^,]+)(?:,([^,]+))?\]", name)
         kind, after, s, by = found.groups() if found else ("", None, self.state, None)
         if s not in self.states or (after is not None and kind not in ("target-miss", "slope")):
             raise Unprovable(f"{name} is no obligation of this claim")
@@ -193,6 +195,14 @@ class Derivation:
         if kind == "slope" and by in self.states:
             bound, given = self.through(domain, {})
             return self.over(self.after(steps, bound, s, by), by, given, True)
+        if kind == "split-slope" and by in self.states and self.statement.correction:
+            return self.split_slope(domain, s, by)
+        if kind == "split-residual" and by is None and self.statement.correction:
+            return self.split_residual(domain, s)
+        if kind == "growth" and by in self.states and self.motion is not None:
+            bound, given = self.through(domain, {})
+            phase = self.terms.put("variable", (), PHASE)
+            return self.over(grown(self.names(bound), self.motion, s, by, phase), "", given, True)
         if len(self.states) == 1 and (one := self.of_one(name, domain)) is not None:
             return one
         support = re.fullmatch(r"support\[([1-9][0-9]{0,3})\]", name)
@@ -207,10 +217,8 @@ class Derivation:
         raise Unprovable(f"{name} is no obligation of this claim")
 
     def of_one(self, name: str, domain: Domain) -> Meaning | None:
-        """Obligations of routes and pushes that are known for a single state only."""
+        """Obligations of routes that are known for a single state only."""
         s = self.state
-        if name in (f"split-slope[{s},{s}]", f"split-residual[{s}]") and self.statement.correction:
-            return self.split(domain, name.startswith("split-slope"))
         courses = re.fullmatch(r"(split-)?signal-slope\[([1-9][0-9]?)\]", name)
         if (
             courses
@@ -224,16 +232,12 @@ class Derivation:
             return self.shell(domain, int(shell[1]))
         if name == f"line[{s}]" and domain.radii:
             return self.line(domain)
-        if name == f"growth[{s}]" and self.motion is not None:
-            bound, given = self.through(domain, {})
-            phase = self.terms.put("variable", (), PHASE)
-            return self.over(grown(self.names(bound), self.motion, s, phase), "", given, True)
         return None
 
     def under_any_course(self, domain: Domain, parts: int, split: bool) -> Meaning:
         """proofs/signals.md: the slope of F, or of x + F − N, with a phase and a value of every signal a part."""
         if split:
-            return self.split(domain, True, parts)
+            return self.split_slope(domain, self.state, self.state, parts)
         bound, given = self.through(domain, {})
         root = self.names(bound, self.state, parts).of(f"next({self.state})")
         return self.over(root, self.state, {**self.courses(parts), **given}, True)
@@ -252,23 +256,32 @@ class Derivation:
         low, high = self.range(self.statement.uncertain[signal])[0]
         return (low + high) / 2
 
-    def split(self, domain: Domain, slope: bool, parts: int = 0) -> Meaning:
-        """proofs/split.md: the slope of x + F − N, or N − x + F(x*) − N(x*), N without the correction."""
-        s, put = self.state, self.terms.put
-        bound, given = self.through(domain, {})
-        without = dict.fromkeys(self.statement.correction, put("number", (), Fraction(0)))
+    def uncorrected(self) -> dict[str, int]:
+        """What names stand for in N, the map without the correction."""
+        return dict.fromkeys(self.statement.correction, self.terms.put("number", (), Fraction(0)))
 
-        def step(bound: dict[str, int], cut: str = "") -> int:
-            return self.after(self.statement.horizon, bound, s, cut, parts)
+    def split_slope(self, domain: Domain, s: str, by: str, parts: int = 0) -> Meaning:
+        """proofs/split.md: a slope of M e + F − N, where M turns the states named in `mirror`."""
+        put, (bound, given) = self.terms.put, self.through(domain, {})
+        steps, without = self.statement.horizon, {**bound, **self.uncorrected()}
+        root = self.terms.difference(self.after(steps, bound, s, by, parts), self.after(steps, without, s, by, parts))
+        if s == by:
+            x = self.names(bound, s).of(s)
+            root = put("sub", (root, x)) if s in self.stance.mirror else put("add", (x, root))
+        return self.over(root, by, {**self.courses(parts), **given}, True)
 
-        if slope:
-            change = self.terms.difference(step(bound, s), step({**bound, **without}, s))
-            kept = self.names(bound, s).of(s)
-            return self.over(put("add", (kept, change)), s, {**self.courses(parts), **given}, True)
-        at = {s: self.names().of(f"target({s})")}
-        kept = put("sub", (step({**bound, **without}), self.names(bound).of(s)))
-        shift = self.terms.difference(step(at), step({**at, **without}))
-        return self.over(put("add", (kept, shift)), "", given, True)
+    def split_residual(self, domain: Domain, s: str) -> Meaning:
+        """proofs/split.md: N + F(x*) − N(x*) less where N ought to lead, the next target and M times the error."""
+        put, steps, (bound, given) = self.terms.put, self.statement.horizon, self.through(domain, {})
+        at = {x: self.names().of(f"target({x})") for x in self.states}
+        shift = self.terms.difference(self.after(steps, at, s), self.after(steps, {**at, **self.uncorrected()}, s))
+        aim = x = self.names(bound).of(s)
+        turned = s in self.stance.mirror
+        if turned or self.onto is not self.statement:  # else x* + M e is x
+            target, error = Names(self.terms, self.onto, {}, "").of(f"target({s})"), put("sub", (x, at[s]))
+            aim = put("sub" if turned else "add", (target, error))
+        nominal = self.after(steps, {**bound, **self.uncorrected()}, s)
+        return self.over(self.terms.difference(put("add", (nominal, shift)), aim), "", given, True)
 
     def line(self, domain: Domain) -> Meaning:
         """proofs/curve.md (2): |F − x*| − k|x − x*| over the set."""
@@ -399,10 +412,9 @@ class Derivation:
 
     def loose(self, route: str = "slope") -> bool:
         """Whether slopes by the state, of what a route takes them of, are those at constant signals only."""
+        whole, pairs = Domain(False, Fraction(0), (Fraction(0), Fraction(0))), product(self.states, self.states)
         if route == "split":
-            whole = Domain(False, Fraction(0), (Fraction(0), Fraction(0)))
-            return self.stirred(self.split(whole, True).root, self.state)
-        pairs = [(s, x) for s in self.states for x in self.states]
+            return any(self.stirred(self.split_slope(whole, s, x).root, x) for s, x in pairs)
         return any(self.stirred(self.names(cut=x).of(f"next({s})"), x) for s, x in pairs)
 
     def kept_by_over(self, name: str, wanted: Ends, domain: Domain) -> None:

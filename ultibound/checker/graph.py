@@ -9,13 +9,13 @@ from fractions import Fraction
 from typing import Any
 
 from .calculus import Unprovable
-from .derive import Derivation, Domain
-from .jacobians import Table
+from .derive import Derivation, Domain, varied
+from .jacobians import OF_COMPARISON, OF_ROUTE, Table, sloped
 from .matrices import Leaf, Matrix, Metric, metric
 from .model import Statement
 from .numerals import Rejected
 from .several import ball, gone_through, hull, matrix, moved, movements, numbers, scaled, shown, stated, stretch
-from .theorems import Line, Quantities, Variant, parted, require
+from .theorems import Line, Quantities, parted, require
 
 MOST_STANCES = 16
 OF_STANCE = ("metric", "range", "point", "squares", "trajectory", "largest-ball", "smaller-ball")
@@ -26,8 +26,8 @@ class Graph:
     """A claim of named stances: what each asks, and every step from one to the next."""
 
     def __init__(self, statement: Statement) -> None:
-        if statement.horizon != 1 or statement.route not in ("best", "slope"):
-            raise Unprovable("only the route slope over one step can be checked between stances")
+        if statement.horizon != 1 or statement.route not in ("best", *OF_ROUTE):
+            raise Unprovable("only the routes slope and split over one step can be checked between stances")
         if len(statement.stances) > MOST_STANCES:
             raise Unprovable(f"at most {MOST_STANCES} stances can be checked")
         self.statement = statement
@@ -50,8 +50,20 @@ def of_stance(statement: Statement, name: str) -> Statement:
     (stance,) = [s for s in statement.stances if s.name == name]
     states = {x: stance.states[x] for x in statement.stances[0].states}
     asked = tuple(replace(r, stance=None) if r.stance == name else r for r in statement.requirements)
-    alone = replace(stance, name="", then=(), mirror=(), states=states)
+    alone = replace(stance, name="", then=(), states=states)
     return replace(statement, stances=(alone,), requirements=asked)
+
+
+def of_ranges(statement: Statement, number: int) -> Statement:
+    """The claim with what `over` of a requirement says: of states in the stances it is about. Raises Unprovable."""
+    alone = {s.name: varied(of_stance(statement, s.name), number) for s in statement.stances}
+    r, one = statement.requirements[number - 1], next(iter(alone.values()))
+    stances = tuple(
+        replace(s, states=alone[s.name].stances[0].states) if r.stance in (None, s.name) else s
+        for s in statement.stances
+    )
+    asked = tuple(replace(x, over={}) if n == number else x for n, x in enumerate(statement.requirements, 1))
+    return replace(one, stances=stances, requirements=asked)
 
 
 def toward(d: Derivation, after: Derivation) -> Derivation:
@@ -61,12 +73,10 @@ def toward(d: Derivation, after: Derivation) -> Derivation:
     return found
 
 
-def of_part(g: Graph | None, variant: Variant, part: str) -> Derivation:
+def of_part(g: Graph | None, part: str) -> Derivation:
     """What a line about a stance, a step or (the part that has no name) all of them refers to."""
     if g is None or (part and part not in g.stances and part not in g.between):
         raise Rejected(f"{part}: no stance of the claim, nor a step from one to the next")
-    if variant:
-        raise Unprovable("ranges for a proof of its own are not known between stances")
     return g.stances.get(part) or g.between.get(part) or g.first
 
 
@@ -86,8 +96,8 @@ def stepping(
     if part in g.stances:
         return about_stance(g.stances[part], part, rule, proves, used, witness, claimed)
     if part in g.between:
-        if rule == "slope":
-            domain, after = slope(g, part, proves, used, claimed)
+        if rule in OF_ROUTE:
+            domain, after = pair(g, part, rule, proves, used, claimed)
             return replace(line, domain=domain, metric=after)
         if rule in ("matrix", "graph-entries", "stretch"):
             return about_step(g, part, rule, proves, used, witness, claimed)
@@ -149,7 +159,7 @@ def across(before: Metric, after: Metric, proves: str) -> Metric:
         raise Rejected("metric: Euclidean lengths and largest magnitudes are not compared with each other")
     n = len(after.inverse)
     one = tuple(tuple(Fraction(int(i == j)) for j in range(n)) for i in range(n))
-    return Metric(after.kind, after.rows, before.inverse if proves == "slopes" else one)
+    return Metric(after.kind, after.rows, before.inverse if sloped(proves) else one)
 
 
 def based(basis: Any, n: int) -> tuple[Matrix, Matrix]:
@@ -159,12 +169,12 @@ def based(basis: Any, n: int) -> tuple[Matrix, Matrix]:
     return found.rows, found.inverse
 
 
-def slope(g: Graph, part: str, proves: str, used: list[Line], claimed: Quantities) -> tuple[Domain, Metric]:
-    """proofs/graph.md (2): gain and residual of a step, its error from the target of the stance that follows."""
+def pair(g: Graph, part: str, route: str, proves: str, used: list[Line], claimed: Quantities) -> tuple[Domain, Metric]:
+    """proofs/graph.md (2), proofs/split.md (3): gain and residual of a step, its error from the target that follows."""
     after = part.partition(">")[2]
     d = g.stances[after]
     ranges = [("range", f"target-slope[{s},{h}]") for s, h in movements(d)]
-    require(proves, "slope", used, [("matrix", "slopes"), ("matrix", "misses"), *ranges])
+    require(proves, route, used, [*(("matrix", x) for x in OF_ROUTE[route]), *ranges])
     parts(used, [part, part, *[after] * len(ranges)])
     domain, norm = used[0].domain, used[0].metric
     if domain is None or norm is None or used[1].domain != domain or used[1].metric != norm:
@@ -215,7 +225,8 @@ def within(x: Quantities, d: Derivation, s: str, what: str) -> None:
 def balls(g: Graph, proves: str, used: list[Line]) -> dict[str, Domain]:
     """proofs/graph.md (3b): k R + residual <= R of the next, on every step."""
     sets, steps = used[: len(g.stances)], used[len(g.stances) :]
-    require(proves, "invariant", used, [*((x.rule, "ball") for x in sets), *[("slope", "slope")] * len(g.steps)])
+    route = route_of(steps)
+    require(proves, "invariant", used, [*((x.rule, "ball") for x in sets), *[(route, route)] * len(g.steps)])
     parts(used, [*g.stances, *g.between])
     found = {x.part: x.domain for x in sets if x.domain is not None}
     stepped(g, steps, found)
@@ -223,6 +234,11 @@ def balls(g: Graph, proves: str, used: list[Line]) -> dict[str, Domain]:
         if not line.concludes["gain"] * found[s].outer + line.concludes["residual"] <= found[t].radius:
             raise Rejected(f"{s}>{t}: gain times radius plus residual exceeds the radius")
     return found
+
+
+def route_of(steps: list[Line]) -> str:
+    """The route of the first line, one of those that gain and residual of every step may come from."""
+    return next((x for x in OF_ROUTE if [line.rule for line in steps[:1]] == [x]), "slope")
 
 
 def kept(used: list[Line]) -> dict[str, Domain]:
@@ -242,7 +258,8 @@ def stepped(g: Graph, lines: list[Line], sets: Mapping[str, Domain]) -> None:
 def bound(g: Graph, proves: str, used: list[Line], witness: dict[str, Any], claimed: Quantities) -> dict[str, Domain]:
     """proofs/graph.md (4): k b + residual <= b of the next and k p < p of the next, on every step."""
     sets = kept(used)
-    require(proves, "bound[slope]", used[1:], [("slope", "slope")] * len(g.steps))
+    route = route_of(used[1:])
+    require(proves, f"bound[{route}]", used[1:], [(route, route)] * len(g.steps))
     parts(used[1:], list(g.between))
     stepped(g, used[1:], sets)
     k: list[Matrix] = [((line.concludes["gain"],),) for line in used[1:]]
@@ -280,10 +297,11 @@ def componentwise(
 ) -> dict[str, Domain]:
     """proofs/graph.md (5): a bound for each state in each stance, by comparison in a basis a stance."""
     moving = {name: movements(d) for name, d in g.stances.items()}
-    wanted = [("graph-entries", x) for _ in g.steps for x in ("slopes", "misses")]
-    wanted += [("range", f"target-slope[{s},{h}]") for name in moving for s, h in moving[name]]
+    name = proves if proves in OF_COMPARISON else "componentwise"
+    wanted = [("graph-entries", x) for _ in g.steps for x in OF_COMPARISON[name]]
+    wanted += [("range", f"target-slope[{s},{h}]") for each in moving.values() for s, h in each]
     sets = kept(used)
-    require(proves, "componentwise", used[1:], wanted)
+    require(proves, name, used[1:], wanted)
     parts(used[1:], [e for e in g.between for _ in range(2)] + [name for name in moving for _ in moving[name]])
     lines = used[1 : 1 + 2 * len(g.steps)]
     ranges, far = iter(used[1 + len(lines) :]), dict[str, list[Fraction]]()

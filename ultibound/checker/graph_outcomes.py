@@ -10,10 +10,25 @@ from .derive import RANGED, Domain
 from .gains import intervals
 from .grammar import constant
 from .graph import Graph
+from .jacobians import OF_COMPARISON, OF_ROUTE
 from .outcomes import SeveralResults
-from .results import GRAIN, LONG, MOST_STEPS, NOTHING, Outcome, Results, Route, Span, compared, less, opposed, verdict
+from .results import (
+    GRAIN,
+    LONG,
+    MOST_STEPS,
+    NOTHING,
+    Outcome,
+    Results,
+    Route,
+    Span,
+    compared,
+    greater,
+    less,
+    opposed,
+    verdict,
+)
 from .rules import Line, Proof, Rejected
-from .theorems import OWN
+from .theorems import OWN, Variant
 
 ROUNDS = 400  # steps for which what is attained on every step is added up
 Levels = dict[str, Fraction]  # an error in the norm of each stance
@@ -22,8 +37,8 @@ Levels = dict[str, Fraction]  # an error in the norm of each stance
 class StanceResults(SeveralResults):
     """One stance: its set and norm, and what all stances together prove of its states."""
 
-    def __init__(self, proof: Proof, graph: Graph, name: str, kept: dict[str, Domain] | None) -> None:
-        self.proof, self.variant, self.part, self.needed = proof, OWN, name, set[int]()
+    def __init__(self, whole: GraphResults, graph: Graph, name: str, kept: dict[str, Domain] | None) -> None:
+        self.proof, self.variant, self.part, self.needed = whole.proof, whole.variant, name, set[int]()
         self.derivation = graph.stances[name]
         self.statement, self.states = self.derivation.statement, self.derivation.states
         self.state, self.any = self.states[0], self.statement.shrink
@@ -41,7 +56,8 @@ class StanceResults(SeveralResults):
         self.centres = {s: Span(*x) for s, x in zip(self.states, balls[0].domain.targets, strict=True)}
         self.radius = Span(self.ball.concludes["radius"], self.ball.concludes.get("outer"))
         self.gain = self.residual = NOTHING
-        self.bound: Span | None = None
+        self.bound = None
+        self.closest: Fraction | None = None
         self.sharp = self.push = None
         self.orbits: dict[str, Fraction | None] = dict.fromkeys(self.states)
 
@@ -66,32 +82,36 @@ class StanceResults(SeveralResults):
         self.radii = {s: self.radius_along(s) for s in self.states}
 
     def in_norm(self) -> Fraction | None:
-        """The bound in the norm of the stance."""
-        return None if self.bound is None else self.bound.upper
+        """The least bound in the norm of the stance."""
+        return self.closest
 
-    def bounded(self, bound: Span | None, by_state: dict[str, Fraction]) -> None:
-        """What is proved of the long run in this stance."""
-        self.bound, self.bounds = bound, dict(by_state)
+    def bounded(self, in_norm: list[Fraction], by_state: dict[str, Fraction]) -> None:
+        """What is proved of the long run in this stance: in its norm by each route, and by comparison."""
+        self.closest, self.bounds = min(in_norm, default=None), dict(by_state)
         for i, s in enumerate(self.states):
-            if bound is not None and bound.upper is not None:
-                by_norm = bound.upper * self.metric.support(i)
+            if self.closest is not None:
+                by_norm = self.closest * self.metric.support(i)
                 self.bounds[s] = min(by_norm, self.bounds.get(s, by_norm))
         self.pushes = {s: self.pushed_along(s) for s in self.states}
 
 
 class StepResults(Results):
-    """Gain and residual of one step, proved and surely taken: proofs/graph.md (2)."""
+    """Gain and residual of one step by a route, proved and surely taken: proofs/graph.md (2), (7)."""
 
-    def __init__(self, proof: Proof, before: StanceResults, after: StanceResults) -> None:
-        self.proof, self.variant, self.part, self.needed = proof, OWN, f"{before.part}>{after.part}", set[int]()
-        self.before, line = before, self.one("slope", "slope")
+    def __init__(self, before: StanceResults, after: StanceResults, route: str) -> None:
+        self.proof, self.variant = before.proof, before.variant
+        self.part, self.needed = f"{before.part}>{after.part}", set[int]()
+        self.before, line = before, self.one(route, route)
         self.shown = None if line is None else (line.concludes["gain"], line.concludes["residual"])
         if line is not None and (line.domain != before.domain or line.metric != after.metric):
             raise Rejected(f"{self.part}: gain and residual refer to another set or norm")
         k, e = self.shown or (None, None)
+        slopes, rest = OF_ROUTE[route]
         # slopes by the state are those at constant signals only: proofs/stance.md (5)
-        self.gain = Span(self.stretched("slopes"), None if before.derivation.loose() else k)
-        self.residual = Span(self.stretched("misses"), e)
+        loose = line is not None and before.derivation.loose(route)
+        self.gain = Span(self.stretched(slopes), None if loose else k)
+        self.missed = self.stretched("misses")  # what the target itself misses, every route has to allow for
+        self.residual = Span(greater(self.missed, self.stretched(rest)), e)
 
     def stretched(self, proves: str) -> Fraction | None:
         """The largest norm surely taken."""
@@ -102,15 +122,16 @@ class StepResults(Results):
 class GraphResults(Results):
     """Everything `results` may claim of a claim of stances."""
 
-    def __init__(self, proof: Proof) -> None:
-        if proof.graph is None:
+    def __init__(self, proof: Proof, variant: Variant = OWN) -> None:
+        graph = proof.stanced(variant)
+        if graph is None:
             raise Rejected("no stances")
-        self.proof, self.graph, self.variant, self.needed = proof, proof.graph, OWN, set[int]()
+        self.proof, self.graph, self.variant, self.needed = proof, graph, variant, set[int]()
         self.derivation, self.statement = self.graph.first, self.graph.statement
         self.states, self.any = self.derivation.states, self.statement.shrink
         invariant = self.one("graph-regions", "invariant") or self.one("graph-balls", "invariant")
         kept = None if invariant is None else invariant.domains
-        self.each = {name: StanceResults(proof, self.graph, name, kept) for name in self.graph.stances}
+        self.each = {name: StanceResults(self, self.graph, name, kept) for name in self.graph.stances}
         self.settled = invariant is not None and all(x.lasts for x in self.each.values())
         self.kind, self.whole = self.set_of(invariant if self.settled else None)
         # smaller balls that are not kept, or a stance that is not shown to last, are no sets to speak of
@@ -118,18 +139,23 @@ class GraphResults(Results):
         self.partial = not self.settled and (small or invariant is not None)
         for x in self.each.values():
             x.placed(self.kind, self.whole, self.settled, self.partial)
-        self.onward = {} if self.partial else self.of_steps()
-        bounds = self.bounds()
+        self.steps_by = {} if self.partial else {route: self.of_steps(route) for route in self.known_routes()}
+        shown = {route: all(x.shown is not None for x in steps.values()) for route, steps in self.steps_by.items()}
+        self.onward = {route: steps for route, steps in self.steps_by.items() if shown[route]}
+        self.bounds_by = {route: self.bounded_by(route) for route in self.onward}
         compared_by_state = self.comparisons()
         for name, x in self.each.items():
-            x.bounded(bounds.get(name), compared_by_state.get(name, {}))
+            uppers = [b for found in self.bounds_by.values() if name in found and (b := found[name].upper) is not None]
+            x.bounded(uppers, compared_by_state.get(name, {}))
         self.radius = least([x.radius for x in self.each.values()])
-        route = self.largest(list(self.each))
+        self.routes = {route: self.largest(list(self.each), route) for route in self.onward}
+        self.reported, self.sharp, self.best, self.push = self.chosen(), None, None, None
+        route = self.routes.get(self.reported, Route())
         self.gain, self.residual, self.bound = route.gain, route.residual, route.bound
-        self.routes = {"slope": route} if self.onward else {}
-        self.reported, self.sharp, self.best, self.push = "slope", None, None, None
-        self.requirements = [self.required(n, r) for n, r in enumerate(self.statement.requirements, 1)]
-        self.needed |= {n for x in (*self.each.values(), *self.onward.values()) for n in x.needed}
+        numbered = enumerate(self.statement.requirements, 1)
+        self.requirements = [self.required(n, r) for n, r in numbered if not variant.over or n == variant.over]
+        self.needed |= {n for x in self.each.values() for n in x.needed}
+        self.needed |= {n for steps in self.onward.values() for x in steps.values() for n in x.needed}
 
     def stances(self) -> dict[str, Results]:
         return dict(self.each)
@@ -149,18 +175,21 @@ class GraphResults(Results):
             return "ball", True
         return "smaller ball", self.statement.shrink and wide
 
-    def of_steps(self) -> dict[tuple[str, str], StepResults]:
-        """Every step from a stance to the next; none where one is not proved."""
-        found = {(s, t): StepResults(self.proof, self.each[s], self.each[t]) for s, t in self.graph.steps}
-        return found if all(x.shown is not None for x in found.values()) else {}
+    def known_routes(self) -> list[str]:
+        """The routes of a claim of stances, whose gains are contractions all of them: proofs/graph.md (7)."""
+        return ["slope", *(["split"] if self.statement.correction else [])]
 
-    def bounds(self) -> dict[str, Span]:
+    def of_steps(self, route: str) -> dict[tuple[str, str], StepResults]:
+        """Every step from a stance to the next, by a route."""
+        return {(s, t): StepResults(self.each[s], self.each[t], route) for s, t in self.graph.steps}
+
+    def bounded_by(self, route: str) -> dict[str, Span]:
         """proofs/graph.md (4): the bound in the norm of each stance; from below what the steps surely add up to."""
-        line = self.one("graph-bound", "bound[slope]")
-        if line is None or not self.settled or not self.onward:
+        line = self.one("graph-bound", f"bound[{route}]")
+        if line is None or not self.settled:
             return {}
         least = dict.fromkeys(self.each, Fraction(0))
-        pairs = {step: (x.gain.lower, x.residual.lower) for step, x in self.onward.items()}
+        pairs = {step: (x.gain.lower, x.residual.lower) for step, x in self.onward[route].items()}
         known = all(k is not None and e is not None for k, e in pairs.values())
         for _ in range(ROUNDS if known else 0):
             before = dict(least)
@@ -174,7 +203,8 @@ class GraphResults(Results):
     def comparisons(self) -> dict[str, dict[str, Fraction]]:
         """proofs/graph.md (5): the least bound of each state in each stance by comparison."""
         found: dict[str, dict[str, Fraction]] = {}
-        lines = self.lines("graph-componentwise", "componentwise") if self.settled else []
+        each = [self.lines("graph-componentwise", x) for x in OF_COMPARISON] if self.settled else []
+        lines = [line for lines in each for line in lines]
         for name, d in self.graph.stances.items():
             for s in d.states if lines else ():
                 least, n = min((line.concludes[f"{name}:{s}"], n) for n, line in lines)
@@ -185,13 +215,24 @@ class GraphResults(Results):
                 raise Rejected("the comparison refers to other sets")
         return found
 
-    def largest(self, names: list[str]) -> Route:
+    def largest(self, names: list[str], route: str) -> Route:
         """Gain and residual of the steps that leave these stances, and the bounds in them: the largest."""
-        steps = [x for (s, _), x in self.onward.items() if s in names]
-        bounds = [self.each[s].bound for s in names]
+        steps = [x for (s, _), x in self.onward.get(route, {}).items() if s in names]
+        bounds = [self.bounds_by[route][s] for s in names] if self.bounds_by.get(route) else []
         gain, residual = most([x.gain for x in steps]), most([x.residual for x in steps])
-        known = [x for x in bounds if x is not None]
-        return Route(gain, residual, most(known) if len(known) == len(bounds) else None)
+        return Route(gain, residual, most(bounds) if bounds else None)
+
+    def contraction_in(self, names: list[str]) -> Span:
+        """The best gain of the routes: from above that of one on every step, from below the least of all on a step."""
+        gains = [self.largest(names, route).gain.upper for route in self.onward]
+        lowers = []
+        for step in self.graph.steps:
+            found = [steps[step] for steps in self.steps_by.values()]
+            taken = [k for x in found if (k := x.gain.lower) is not None]
+            if step[0] in names and found and len(taken) == len(found):
+                lowers.append(min(taken))
+                self.needed |= {n for x in found for n in x.needed}
+        return Span(max(lowers, default=None), min([k for k in gains if k is not None], default=None))
 
     def asked(self, r: Any) -> list[StanceResults]:
         """The stances that a requirement is about."""
@@ -202,7 +243,7 @@ class GraphResults(Results):
         if r.kind in RANGED:
             return together([x.ranged(number, r) for x in several])
         if r.over:
-            return Outcome("undecided", None)
+            return self.elsewhere(number)
         if r.kind == "settles":
             return self.inside(several)
         c = constant(r.constant, self.statement.values)
@@ -210,7 +251,7 @@ class GraphResults(Results):
             span = self.wide(several, r.state)
             return verdict(span is not None and compared(r.relation, Span(span.lower, None), c), False, span)
         if r.kind == "push":
-            spans = [] if r.during else [x.pushes[r.state] for x in several]
+            spans = [self.pushed_through(x, r.state) if r.during else x.pushes[r.state] for x in several]
             span = least([x for x in spans if x is not None]) if spans and None not in spans else None
             return verdict(span is not None and less(c[1], span.lower), False, span)
         if r.kind == "steps":
@@ -225,15 +266,19 @@ class GraphResults(Results):
 
     def in_norms(self, several: list[StanceResults], r: Any, c: tuple[Fraction, Fraction]) -> Outcome:
         """Gain, residual and bound: several.md (4), (5e), in the norms of the stances."""
-        route = self.largest([x.part for x in several])
-        found = {"bound": route.bound, "gain": route.gain, "residual": route.residual}.get(r.kind)
+        names, asked = [x.part for x in several], self.statement.route
+        route = self.largest(names, self.reported)
+        gain = self.contraction_in(names) if asked == "best" else route.gain
+        found = {"bound": route.bound, "gain": gain, "residual": route.residual}.get(r.kind)
         upper = Span(None, None if found is None else found.upper)
         means = r.kind == "gain" or all(x.meant() for x in self.each.values())
         proved = self.whole and compared(r.relation, upper, c) and means
         # in a metric the claim fixes, what is surely taken settles it; in another norm it might be less
-        final = self.fixed() and not self.any and not self.partial and r.kind != "bound" and found is not None
-        final &= r.kind != "gain" or self.statement.route == "slope" or not self.statement.correction
-        return verdict(proved, final and opposed(r.relation, Span(None, found.lower if found else None), c), found)
+        final = self.fixed() and not self.any and not self.partial
+        slopes = self.steps_by.get("slope", {}).items()
+        missed = [x.missed for (s, _), x in slopes if s in names and x.missed is not None]
+        least = {"gain": gain.lower, "residual": max(missed, default=None)}.get(r.kind)
+        return verdict(proved, final and opposed(r.relation, Span(None, least), c), found)
 
     def fixed(self) -> bool:
         """Whether the claim itself fixes the norms."""
@@ -256,20 +301,30 @@ class GraphResults(Results):
         spans = [x.radii[state] if state is not None else x.radius for x in several] if self.settled else [None]
         return least([x for x in spans if x is not None]) if None not in spans else None
 
+    def pushed_through(self, x: StanceResults, s: str) -> Span | None:
+        """proofs/stance.md (7): a push during a stance leads into the sets of those that may follow it."""
+        grown = x.grown_to(s)
+        left = [self.each[t].left_for(grown) for before, t in self.graph.steps if before == x.part]
+        known = [y for y in left if y is not None]
+        return Span(min(known), None) if known and len(known) == len(left) else None
+
     def counted(self, several: list[StanceResults], r: Any, c: tuple[Fraction, Fraction]) -> Outcome:
-        """proofs/graph.md (6): steps after which a state stays within `to`, from any of these stances."""
+        """proofs/graph.md (6): steps after which a state stays within `to`, from any of these stances, by any route."""
         start, end = (constant(e, self.statement.values) for e in (r.start, r.end))
-        i, limit, count = self.states.index(r.state), self.wide(several, r.state), None
+        i, limit, counts = self.states.index(r.state), self.wide(several, r.state), list[int]()
         if limit is not None and less(start[1], limit.lower, equal=True):
             levels = {x.part: start[1] * x.metric.unit(i)[1] for x in several}
-            wanted = self.below({name: end[0] / x.metric.support(i) for name, x in self.each.items()})
-            count = None if wanted is None else self.count_of(levels, wanted)
-        proved = count is not None and compared(r.relation, Span(None, Fraction(count)), c)
-        return verdict(proved, False, None if count is None else Span(None, Fraction(count)))
+            goal = {name: end[0] / x.metric.support(i) for name, x in self.each.items()}
+            for route in self.onward:
+                wanted = self.below(goal, route)
+                count = None if wanted is None else self.count_of(levels, wanted, route)
+                counts += [] if count is None else [count]
+        span = Span(None, Fraction(min(counts))) if counts else None
+        return verdict(span is not None and compared(r.relation, span, c), False, span)
 
-    def below(self, wanted: Levels) -> Levels | None:
+    def below(self, wanted: Levels, route: str) -> Levels | None:
         """Levels no higher that are mapped below themselves on every step."""
-        pairs = self.pairs()
+        pairs = self.pairs(route)
         found = dict(wanted)
         for _ in self.each if pairs else ():
             for (s, t), (k, e) in pairs.items():
@@ -278,11 +333,14 @@ class GraphResults(Results):
         kept = all(k * found[s] + e <= found[t] for (s, t), (k, e) in pairs.items())
         return found if pairs and kept and min(found.values()) >= 0 else None
 
-    def count_of(self, levels: Levels, wanted: Levels) -> int | None:
-        pairs = self.pairs()
+    def count_of(self, levels: Levels, wanted: Levels, route: str) -> int | None:
+        pairs, once = self.pairs(route), Levels()
         for n in range(MOST_STEPS // len(pairs)):
             if all(x <= wanted[s] for s, x in levels.items()):
                 return n
+            if levels == once:  # then they go round for ever
+                return None
+            once = levels if n & (n - 1) == 0 else once
             after: Levels = {}
             for (s, t), (k, e) in pairs.items():
                 if s in levels:
@@ -290,9 +348,9 @@ class GraphResults(Results):
             levels = after
         return None
 
-    def pairs(self) -> dict[tuple[str, str], tuple[Fraction, Fraction]]:
-        """Gain and residual of every step, proved."""
-        return {step: x.shown for step, x in self.onward.items() if x.shown is not None}
+    def pairs(self, route: str) -> dict[tuple[str, str], tuple[Fraction, Fraction]]:
+        """Gain and residual of every step, proved by a route."""
+        return {step: x.shown for step, x in self.onward[route].items() if x.shown is not None}
 
     def by_state(self) -> dict[str, dict[str, Span | None]]:
         found: dict[str, dict[str, Span | None]] = {}

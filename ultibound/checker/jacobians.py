@@ -19,12 +19,15 @@ from .numerals import Rejected
 from .ranges import Box, Ends, Evaluator, Interval
 from .reals import Undefined
 
-TABLES = ("slopes", "misses")
+BY_SLOPE, BY_SPLIT = ("slopes", "misses"), ("split-slopes", "split-residuals")
+OF_ROUTE = {"slope": BY_SLOPE, "split": BY_SPLIT}  # what gain and residual are of
+OF_COMPARISON = {"componentwise": BY_SLOPE, "split-componentwise": BY_SPLIT}  # and what is compared entry by entry
+ENTRY = {"slopes": "slope", "misses": "target-miss", "split-slopes": "split-slope", "split-residuals": "split-residual"}
 Part = tuple[Fraction, dict[int, Fraction], Fraction]
 
 
 class Table:
-    """The entries of ∂F/∂x over a set (`slopes`), or of F(x*, w) − x* (`misses`), in the variables of all of them."""
+    """The entries of a matrix of slopes over a set, or of the vector that belongs to it, in the variables of all."""
 
     def __init__(self, d: Derivation, proves: str, domain: Domain, bits: Any, flows: Flows | None) -> None:
         self.d, self.domain, self.a = d, domain, arithmetic(bits)
@@ -132,10 +135,16 @@ class Joined(Table):
 def named(d: Derivation, proves: str) -> list[list[str]]:
     """The entries of a matrix, row by row."""
     kind, at, steps = proves.partition("@")
-    if kind not in TABLES:
-        raise Rejected(f"a matrix proves {' or '.join(TABLES)}, or these after fewer steps")
-    columns = d.states if kind == "slopes" else ("",)
-    return [[f"slope{at}{steps}[{s},{x}]" if x else f"target-miss{at}{steps}[{s}]" for x in columns] for s in d.states]
+    if kind not in (BY_SLOPE if at else ENTRY):
+        more = " or ".join(BY_SPLIT)
+        raise Rejected(f"a matrix proves {' or '.join(BY_SLOPE)}, or these after fewer steps, or {more}")
+    columns = d.states if sloped(proves) else ("",)
+    return [[f"{ENTRY[kind]}{at}{steps}[{s}{',' if x else ''}{x}]" for x in columns] for s in d.states]
+
+
+def sloped(proves: str) -> bool:
+    """Whether a matrix is one of slopes by the states: it is seen from the norm of the error before the step."""
+    return proves.partition("@")[0] in ("slopes", "split-slopes")
 
 
 def inside(d: Derivation, domain: Domain | None, at: Mapping[str, Ends]) -> None:

@@ -3,13 +3,15 @@
 from __future__ import annotations
 
 from fractions import Fraction
+from itertools import product
 from typing import Any
 
-from .grammar import constant
+from .grammar import Ends, constant
+from .jacobians import OF_COMPARISON, OF_ROUTE
 from .matrices import Metric, dot
 from .results import NOTHING, Outcome, Results, Route, Span, compared, greater, less, opposed, verdict
 from .rules import Proof, Rejected
-from .theorems import OWN, Variant
+from .theorems import OWN, Variant, ends
 
 
 class SeveralResults(Results):
@@ -35,18 +37,20 @@ class SeveralResults(Results):
         self.partial = not self.settled and (ball.rule == "smaller-ball" or invariant is not None or not self.lasting)
         self.centres = {s: Span(*x) for s, x in zip(self.states, balls[0].domain.targets, strict=True)}
         self.radius = Span(ball.concludes["radius"], ball.concludes.get("outer"))
-        self.edge, self.orbit, self.room, self.missed = self.radius.upper, None, None, None
+        self.edge, self.orbit, self.room = self.radius.upper, None, None
+        self.missed = None if self.partial else self.stretched("misses")  # what every route has to allow for
         self.kind, self.whole = self.set_found(invariant if self.settled else None, ball)
         self.edges = {s: self.reached(s) for s in self.states if self.kind == "region"}
-        self.growth, self.everywhere = self.grown()
-        self.routes = {} if self.partial or self.one("slope", "slope") is None else {"slope": self.of_slope()}
-        self.reported = "slope"
+        self.growth = {x: self.grown(matrices[0]) for x, matrices in OF_ROUTE.items()}
+        shown = [x for x in OF_ROUTE if self.one(x, x) is not None]
+        self.routes = {} if self.partial else {x: self.of_route(x) for x in shown}
+        self.reported = self.chosen()
         self.best = self.sharp = None
         self.orbits = {s: self.farthest(s) for s in self.states}
         self.bounds = self.bounds_by_state()
         self.lift(self.within())
-        route = self.routes.get("slope", Route())
-        self.gain, self.residual, self.bound = self.slopes("slope"), route.residual, route.bound
+        route = self.routes.get(self.reported, Route())
+        self.gain, self.residual, self.bound = self.slopes(self.reported), route.residual, route.bound
         self.push = None
         self.pushes = {s: self.pushed_along(s) for s in self.states}
         self.radii = {s: self.radius_along(s) for s in self.states}
@@ -77,27 +81,40 @@ class SeveralResults(Results):
             self.needed.add(min(found)[1])
         return Span(min(centre.lower - inner_low, inner_high - centre.upper), min(found)[0] if found else None)
 
-    def of_slope(self) -> Route:
-        """proofs/several.md (2): gain and residual in the metric, and the bound they give."""
-        line = self.one("slope", "slope")
+    def of_route(self, name: str) -> Route:
+        """proofs/several.md (2), proofs/split.md (3): gain and residual in the metric, and the bound they give."""
+        line, (slopes, rest) = self.one(name, name), OF_ROUTE[name]
         if line is None or line.domain != self.domain:
-            raise Rejected("gain and residual of slope refer to another set")
-        k, least = greater(self.stretched("slopes"), self.growth), self.stretched("misses")
+            raise Rejected(f"gain and residual of {name} refer to another set")
+        k, least = greater(self.stretched(slopes), self.growth[name][0]), greater(self.missed, self.stretched(rest))
         gain, residual = Span(k, line.concludes["gain"]), Span(least, line.concludes["residual"])
-        bounded = self.one("ultimate-bound", "bound[slope]")
+        bounded = self.one("ultimate-bound", f"bound[{name}]")
         if bounded is None:
             return Route(gain, residual)
         lower = None if k is None or least is None or not k < 1 else least / (1 - k)
         return Route(gain, residual, Span(lower, bounded.concludes["bound"]))
+
+    def contraction(self) -> Span:
+        """The best gain of the routes: a lower end where each is known not to be below it (attained.md (3))."""
+        lowers = [self.taken(x) for x in self.contracting()]
+        uppers = [k for x in self.routes if (k := self.slopes(x).upper) is not None]
+        return Span(least_of(lowers), min(uppers, default=None))
+
+    def taken(self, route: str, anywhere: bool = False) -> Fraction | None:
+        """What the gain of a route is at least: in the norm of the proof, or `anywhere`, whatever the norm and set."""
+        growth, everywhere = self.growth[route]
+        known = not self.partial and (self.stated() or not anywhere)
+        here = greater(self.stretched(OF_ROUTE[route][0]), growth) if known else None
+        return greater(here, growth) if everywhere else here
 
     def stretched(self, proves: str) -> Fraction | None:
         """The largest norm surely taken."""
         lines = self.lines("stretch", proves) if self.lasting else []
         return self.surely((x.concludes["lower"], n) for n, x in lines if x.domain == self.domain)
 
-    def grown(self) -> tuple[Fraction | None, bool]:
+    def grown(self, slopes: str) -> tuple[Fraction | None, bool]:
         """proofs/several.md (7): the gain that a product of Jacobians shows in any norm, and whether in any set too."""
-        lines = [x for x in self.lines("product", "slopes") if self.lasting and x[1].domain == self.domain]
+        lines = [x for x in self.lines("product", slopes) if self.lasting and x[1].domain == self.domain]
         found = [(x.concludes["lower"], not x.on_set or self.kind == "region", n) for n, x in lines]
         if not found:
             return None, False
@@ -107,7 +124,8 @@ class SeveralResults(Results):
 
     def bounds_by_state(self) -> dict[str, Fraction]:
         """proofs/several.md (2), (3), (8): the least bound of each state, by the norm, by comparison, by polytopes."""
-        lines = [x for rule in ("componentwise", "attracting") for x in self.lines(rule, rule)]
+        lines = [x for proves in OF_COMPARISON for x in self.lines("componentwise", proves)]
+        lines += self.lines("attracting", "attracting")
         if any(line.domain is None or self.domain not in (line.domain, line.domain.of) for _, line in lines):
             raise Rejected("the comparison refers to another set")
         if not self.settled:
@@ -123,9 +141,9 @@ class SeveralResults(Results):
         return found
 
     def in_norm(self) -> Fraction | None:
-        """The bound of the route itself."""
-        bound = self.routes.get("slope", Route()).bound
-        return None if bound is None else bound.upper
+        """The least bound of a route."""
+        bounds = [r.bound.upper for r in self.routes.values() if r.bound is not None and r.bound.upper is not None]
+        return min(bounds, default=None)
 
     def lift(self, least: Fraction | None) -> None:
         super().lift(least)
@@ -169,6 +187,29 @@ class SeveralResults(Results):
             left = None if span is None else span / self.metric.unit(self.states.index(s))[1]
         return Span(left, None) if left is not None and left > 0 else None
 
+    def grown_to(self, s: str) -> list[Ends] | None:
+        """What a push of a state within the stance has grown to by touchdown, in each state: proofs/stance.md (6)."""
+        lines = [self.one("range", f"growth[{x},{s}]") for x in self.states]
+        found = [ends(x) for x in lines if x is not None and x.domain == self.domain]
+        return found if len(found) == len(self.states) else None
+
+    def left_for(self, grown: list[Ends] | None) -> Fraction | None:
+        """How large a push may be that leads into this set and has grown so by then: proofs/stance.md (7)."""
+        if not self.whole or grown is None:
+            return None
+        if self.kind == "region":
+            rooms = [(self.edges[s].lower, self.bounds.get(s)) for s in self.states]
+            sizes = [max(-low, high) for low, high in grown]
+        else:
+            rooms, sizes = [(self.radius.lower, self.within())], [max(self.metric.most(x) for x in product(*grown))]
+        left = [
+            None if edge is None or bound is None else (edge - bound) / size
+            for (edge, bound), size in zip(rooms, sizes, strict=True)
+            if size > 0
+        ]
+        known = [x for x in left if x is not None and x > 0]
+        return min(known) if known and len(known) == len(left) else None
+
     def required(self, number: int, r: Any) -> Outcome:
         if r.stance is not None or r.kind not in (
             "bound",
@@ -187,7 +228,8 @@ class SeveralResults(Results):
             span = self.radii[r.state]
             return verdict(span is not None and compared(r.relation, Span(span.lower, None), c), False, span)
         if r.kind == "push":
-            span = None if r.during else self.pushes[r.state]
+            left = self.left_for(self.grown_to(r.state)) if r.during else None
+            span = (None if left is None else Span(left, None)) if r.during else self.pushes[r.state]
             return verdict(span is not None and less(c[1], span.lower), False, span)
         if r.kind == "steps":
             return self.stepped_along(r, c)
@@ -196,18 +238,26 @@ class SeveralResults(Results):
             proved = self.whole and span is not None and compared(r.relation, Span(None, span.upper), c)
             taken = Span(None, None if span is None else span.lower)
             return verdict(proved, not self.any and opposed(r.relation, taken, c), span)
-        found = {"bound": self.bound, "gain": self.gain, "residual": self.residual}.get(r.kind)
-        upper = Span(None, None if found is None else found.upper)
+        if r.kind == "gain":
+            return self.gained(r, c)
+        found = {"bound": self.bound, "residual": self.residual}.get(r.kind)
         # a length says nothing in a norm that may be as small as one likes; a gain is the same in any unit
-        proved = self.whole and compared(r.relation, upper, c) and (r.kind == "gain" or self.meant())
+        upper = Span(None, None if found is None else found.upper)
+        proved = self.whole and compared(r.relation, upper, c) and self.meant()
         # in a metric the claim fixes, what is surely taken settles it; in another norm it might be less
-        least = found.lower if found is not None and self.stated() and r.kind != "bound" else None
-        if r.kind == "gain" and found is not None:
-            if self.everywhere:
-                least, found = greater(least, self.growth), Span(greater(found.lower, self.growth), found.upper)
-            # nor is another route's gain, told apart from a correction, known from here
-            least = least if self.statement.route == "slope" or not self.statement.correction else None
+        least = self.missed if self.stated() and r.kind == "residual" else None
         return verdict(proved, not self.any and opposed(r.relation, Span(None, least), c), found)
+
+    def gained(self, r: Any, c: tuple[Fraction, Fraction]) -> Outcome:
+        """Refuted only where no route is left that might have a smaller gain, in this norm or another."""
+        asked = [self.statement.route] if self.statement.route in OF_ROUTE else self.contracting()
+        span = self.contraction()
+        if self.statement.route in OF_ROUTE:
+            (route,) = asked
+            span = Span(self.taken(route), self.slopes(route).upper)
+        proved = self.whole and compared(r.relation, Span(None, span.upper), c)
+        least = least_of([self.taken(x, True) for x in asked])
+        return verdict(proved, not self.any and opposed(r.relation, Span(None, least), c), span)
 
     def long_run(self, s: str) -> Span | None:
         """How far a state can be in the long run: taken by an orbit, and proved."""
@@ -247,7 +297,8 @@ class SeveralResults(Results):
         most: int | None = None
         if self.settled and limit is not None and less(start[1], limit.lower, equal=True):
             wide = self.metric.support(i)
-            most = self.steps("slope", start[1] * self.metric.unit(i)[1], end[0] / wide)
+            first, last = start[1] * self.metric.unit(i)[1], end[0] / wide
+            most = min((n for x in self.routes if (n := self.steps(x, first, last)) is not None), default=None)
         span = None if most is None else Span(None, Fraction(most))
         proved = most is not None and compared(r.relation, Span(None, Fraction(most)), c)
         return verdict(proved, False, span)
@@ -271,3 +322,9 @@ class SeveralResults(Results):
             columns = tuple(zip(*rows, strict=True))
             rows = tuple(tuple(dot(a, b) for b in columns) for a in columns)
         return {"kind": self.metric.kind, "matrix": [[str(x) for x in row] for row in rows]}
+
+
+def least_of(ends: list[Fraction | None]) -> Fraction | None:
+    """The least of several lower ends; None unless all are known."""
+    known = [x for x in ends if x is not None]
+    return min(known) if known and len(known) == len(ends) else None

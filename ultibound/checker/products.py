@@ -10,7 +10,7 @@ from math import ceil, floor
 from typing import Any
 
 from .derive import Derivation, Domain
-from .jacobians import Table, middle_and_half
+from .jacobians import Table, middle_and_half, sloped
 from .matrices import Whole, added, flat, magnitudes, times
 from .numerals import Rejected
 from .ranges import Box, Ends
@@ -33,7 +33,7 @@ class Rough:
 def product(d: Derivation, proves: str, used: list[Line], witness: dict[str, Any], claimed: Quantities) -> Line:
     """A product of m Jacobians, its p-th power M: n c^(m p) <= |tr M| for any gain c. `on_set`: not all at a target."""
     used, flows = parted(used)
-    if proves != "slopes" or len(used) != 1 or used[0].domain is None:
+    if not sloped(proves) or "@" in proves or len(used) != 1 or used[0].domain is None:
         raise Rejected("a product of slopes rests on the one line that gives the set")
     if d.statement.horizon != 1:
         raise Rejected("products are known for single steps only")

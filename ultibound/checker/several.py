@@ -12,7 +12,7 @@ from .derive import Derivation, Domain
 from .flows import Flows
 from .grammar import constant
 from .inequality import Inequality
-from .jacobians import Table, middle_and_half
+from .jacobians import OF_COMPARISON, OF_ROUTE, Table, middle_and_half, sloped
 from .matrices import (
     ENTRY_BITS,
     Leaf,
@@ -142,9 +142,9 @@ def concluded(
         return replace(line, domain=ball(d, rule, proves, used, claimed))
     if several and rule == "invariant-region":
         return replace(line, domain=invariant_region(d, proves, used))
-    if several and rule == "slope":
-        return replace(line, domain=slope(d, proves, used, claimed))
-    if several and rule in ("split", "curve", "shells", "orbit", "path"):
+    if several and rule in OF_ROUTE:
+        return replace(line, domain=pair(d, rule, proves, used, claimed))
+    if several and rule in ("sector", "curve", "shells", "orbit", "path"):
         raise Rejected(f"{rule}: known for a single state only")
     return None
 
@@ -172,7 +172,7 @@ def scaled(
     before: Metric, after: Metric, proves: str, witness: dict[str, Any], claimed: Quantities
 ) -> Inequality | None:
     """The inequality that is to hold on every leaf, of ellipsoids by scales; None where there are none."""
-    scales, of_slopes = witness["scales"], proves.startswith("slopes")
+    scales, of_slopes = witness["scales"], sloped(proves)
     if scales == []:
         return None
     if not isinstance(scales, list) or len(scales) != 2 or {before.kind, after.kind} != {"ellipsoid"}:
@@ -235,7 +235,7 @@ def apart(basis: tuple[Matrix, Matrix], proves: str, beside: Any) -> Matrix:
     if beside == []:
         return ()
     rows, z = basis[0], matrix(beside, "beside")
-    if not proves.startswith("slopes") or len(z) != len(rows) or any(len(row) != len(rows) for row in z):
+    if not sloped(proves) or len(z) != len(rows) or any(len(row) != len(rows) for row in z):
         raise Rejected("beside: of slopes, a row and a column for each row of the basis")
     if not vanishes(z, rows):
         raise Rejected("beside: times the rows it is not 0")
@@ -249,7 +249,7 @@ def hull(
     frame, found, count, nothing = framed(*basis), list[Whole](), 0, Fraction(0)
     for leaf in leaves:
         count += 1
-        here = entries(frame, leaf, proves.startswith("slopes"))
+        here = entries(frame, leaf, sloped(proves))
         found = [
             [list(map(pick, a, b)) for a, b in zip(x, y, strict=True)]
             for pick, x, y in zip((min, max), found or here, here, strict=True)
@@ -299,7 +299,7 @@ def stretch(
     direction = numbers(witness["direction"], "direction", len(middle[0]))
     image = [sum((x * y for x, y in zip(row, direction, strict=True)), Fraction(0)) for row in middle]
     off = [sum((x * abs(y) for x, y in zip(row, direction, strict=True)), Fraction(0)) for row in half]
-    size = before.most(direction) if proves.startswith("slopes") else abs(direction[0])
+    size = before.most(direction) if sloped(proves) else abs(direction[0])
     if not size > 0 or not claimed["lower"] * size <= after.least(image) - after.length(off):
         raise Rejected(f"{proves}: the direction is not shown to be stretched by so much")
 
@@ -316,11 +316,11 @@ def moved(d: Derivation, lines: list[Line]) -> list[Fraction]:
     return list(found.values())
 
 
-def slope(d: Derivation, proves: str, used: list[Line], claimed: Quantities) -> Domain:
-    """proofs/several.md (2): gain and residual in the metric."""
+def pair(d: Derivation, route: str, proves: str, used: list[Line], claimed: Quantities) -> Domain:
+    """proofs/several.md (2), proofs/split.md (3): gain and residual of a route in the metric."""
     ranges = [("range", f"target-slope[{s},{h}]") for s, h in movements(d)]
     on = fewer(proves)
-    require(proves, f"slope{on}", used, [("matrix", f"slopes{on}"), ("matrix", f"misses{on}"), *ranges])
+    require(proves, f"{route}{on}", used, [*(("matrix", f"{x}{on}") for x in OF_ROUTE[route]), *ranges])
     domain = used[0].domain
     if domain is None or domain.metric is None or used[1].domain != domain:
         raise Rejected("the residual refers to another set")
@@ -333,10 +333,10 @@ def slope(d: Derivation, proves: str, used: list[Line], claimed: Quantities) -> 
 def componentwise(d: Derivation, proves: str, used: list[Line], witness: dict[str, Any], claimed: Quantities) -> Domain:
     """proofs/several.md (3): K, residual and p > K p entry by entry, in a basis; a bound for each state."""
     ranges = [("range", f"target-slope[{s},{h}]") for s, h in movements(d)]
-    found = [("entries", "slopes"), ("entries", "misses"), *ranges]
-    if proves != "componentwise" or [x.proves for x in used[:1]] not in (["invariant"], ["absorbed"]):
+    found = [*(("entries", x) for x in OF_COMPARISON.get(proves, ())), *ranges]
+    if proves not in OF_COMPARISON or [x.proves for x in used[:1]] not in (["invariant"], ["absorbed"]):
         raise Rejected("componentwise rests on the invariant set, then entries")
-    require(proves, "componentwise", used[1:], found)
+    require(proves, proves, used[1:], found)
     slopes, misses, domain = used[1], used[2], used[0].domain
     if domain is None or slopes.domain != domain or misses.domain not in (domain, domain.of):
         raise Rejected("entries of another set")

@@ -9,14 +9,15 @@ from collections.abc import Mapping, Sequence
 from dataclasses import dataclass, replace
 from fractions import Fraction
 from functools import partial
-from itertools import pairwise
+from itertools import pairwise, product
 from math import prod
 
 from .constants import constant
 from .errors import Bad
 from .graph import Graph
 from .model import Claim, Quantity, Range, Requirement, Stance
-from .motion import PHASE, TIME, Motion, copy, grown, landed, motion, supported
+from .motion import PHASE, TIME, Motion, copy, landed, motion, supported
+from .pushes import grown
 from .resolve import Scope
 from .signals import excess, followed, instant
 
@@ -182,17 +183,19 @@ class Obligations:
         hulls = {h: (self._occurs(self.claim.uncertain[h]),) * 2 for h in self.moving(s)}
         return self._of(f"target-slope[{s},{held}]", root, held, hulls)
 
-    def split_slope(self, domain: Domain) -> Obligation:
-        """split-slope[s,s]: ∂(x + F − N)/∂x over the set, N the map without its correction (proofs/split.md)."""
-        s, (bound, ranges) = self.state, self._set(domain)
-        return self._of(f"split-slope[{s},{s}]", self._split(bound), s, ranges)
+    def split_slope(self, domain: Domain, of: str = "", by: str = "", parts: int = 0) -> Obligation:
+        """split-slope[s,x]: ∂(M e + F − N)_s/∂x over the set, N the map without its correction (proofs/split.md).
 
-    def _split(self, bound: dict[str, int], parts: int = 0) -> int:
-        s, g = self.state, self.graph
-        change = g.difference(
-            self._after(bound, s, s, parts=parts), self._after({**bound, **self._uncorrected()}, s, s, parts=parts)
-        )
-        return g.add("add", self._scope(bound, s).name(s), change)
+        M turns the states that the stance names in `mirror`, and keeps the others.
+        """
+        s, x, g, (bound, ranges) = of or self.state, by or self.state, self.graph, self._set(domain)
+        plain, nominal = (self._after(b, s, x, parts=parts) for b in (bound, {**bound, **self._uncorrected()}))
+        root = g.difference(plain, nominal)
+        if s == x:
+            root = g.add("sub", root, self._scope(bound, x).name(x)) if s in self.stance.mirror else g.add(
+                "add", self._scope(bound, x).name(x), root
+            )  # fmt: skip
+        return self._of(f"split-slope[{s},{x}]", root, x, ranges)
 
     def under_any_course(self, domain: Domain, parts: int, route: str = "slope") -> Obligation:
         """signal-slope[M], split-signal-slope[M]: what the route takes slopes of, signals of any course in M parts.
@@ -200,10 +203,11 @@ class Obligations:
         Each part has a phase and a value of every signal (proofs/signals.md). Raises Bad where no such bound is known.
         """
         s, (bound, ranges) = self.state, self._set(domain)
-        split = route == "split"
-        root = self._split(bound, parts) if split else self._scope(bound, s, parts).name(f"next({s})")
-        name = f"{'split-' if split else ''}signal-slope[{parts}]"
-        return self._of(name, root, s, {**self._courses(parts), **ranges})
+        if route == "split":
+            found = self.split_slope(domain, parts=parts)
+            return self._of(f"split-signal-slope[{parts}]", found.root, s, {**self._courses(parts), **ranges})
+        root = self._scope(bound, s, parts).name(f"next({s})")
+        return self._of(f"signal-slope[{parts}]", root, s, {**self._courses(parts), **ranges})
 
     def _courses(self, parts: int) -> dict[str, tuple[Ends, Ends]]:
         """Phases of the parts of a stance, and what signals may be above the middles of their ranges."""
@@ -220,14 +224,20 @@ class Obligations:
         ((low, high),), _, _ = self._cells(self.claim.uncertain[signal])
         return (low + high) / 2
 
-    def split_residual(self, domain: Domain) -> Obligation:
-        """split-residual[s]: N − x + F(x*) − N(x*) over the set."""
-        s, g = self.state, self.graph
-        bound, ranges = self._set(domain)
-        at = {s: self._scope({}).name(f"target({s})")}
-        kept = g.add("sub", self._after({**bound, **self._uncorrected()}, s), self._scope(bound).name(s))
+    def split_residual(self, domain: Domain, of: str = "", onto: Stance | None = None) -> Obligation:
+        """split-residual[s]: N + F(x*) − N(x*) less where N ought to lead, x* + M e, over the set.
+
+        `onto`: that x* is of the stance that follows.
+        """
+        s, g, (bound, ranges) = of or self.state, self.graph, self._set(domain)
+        at = {x: self._scope({}).name(f"target({x})") for x in self.states}
         shift = g.difference(self._after(at, s), self._after({**at, **self._uncorrected()}, s))
-        return self._of(f"split-residual[{s}]", g.add("add", kept, shift), "", ranges)
+        wanted = state = self._scope(bound).name(s)
+        if s in self.stance.mirror or not (onto is None or onto is self.stance):
+            aim = Scope(self.graph, self.claim, onto or self.stance).name(f"target({s})")
+            wanted = g.add("sub" if s in self.stance.mirror else "add", aim, g.add("sub", state, at[s]))
+        nominal = self._after({**bound, **self._uncorrected()}, s)
+        return self._of(f"split-residual[{s}]", g.difference(g.add("add", nominal, shift), wanted), "", ranges)
 
     def sector(self, domain: Domain) -> tuple[Obligation, Obligation, Obligation, Obligation]:
         """sector-sensitivity[s], sector-gain[s], sector-start[s], sector-residual[s] (proofs/sector.md).
@@ -319,14 +329,14 @@ class Obligations:
         root = supported(self._scope(bound), self.motion, self.motion.positive[number - 1], phase)
         return self._of(f"support[{number}]", root, "", ranges)
 
-    def growth(self, domain: Domain) -> Obligation:
-        """growth[s]: how a change of the state within the stance has grown by touchdown (proofs/stance.md (6))."""
+    def growth(self, domain: Domain, of: str = "", by: str = "") -> Obligation:
+        """growth[s,x]: how a push of x within the stance has grown in s by touchdown (proofs/stance.md (6), (7))."""
         bound, ranges = self._set(domain)
-        scope = self._scope(bound)
+        s, x = of or self.state, by or self.state
         if self.motion is None:
             raise ValueError("no stance")
         phase = self.graph.add("variable", name=PHASE)
-        return self._of(f"growth[{self.state}]", grown(scope, self.motion, self.state, phase), "", ranges)
+        return self._of(f"growth[{s},{x}]", grown(self._scope(bound), self.motion, s, x, phase), "", ranges)
 
     def coefficients(self) -> list[Obligation]:
         """Coefficients of the rates over region, uncertain values and phases, for where they are not defined."""
@@ -402,7 +412,8 @@ class Obligations:
     def loose(self, route: str) -> bool:
         """Whether the slopes of a route are those at constant signals only (proofs/stance.md (5))."""
         whole = Domain("region", Fraction(0), (Fraction(0), Fraction(0)))
-        return self._stirred((self.split_slope(whole) if route == "split" else self.slope(whole)).root, self.state)
+        pairs, slope = product(self.states, self.states), self.split_slope if route == "split" else self.slope
+        return any(self._stirred(slope(whole, s, x).root, x) for s, x in pairs)
 
     def _stirred(self, root: int, by: str) -> bool:
         """Whether a signal's effect follows a marked name (proofs/stance.md (5))."""

@@ -8,8 +8,8 @@ from fractions import Fraction
 from .constants import constant
 from .errors import Bad, nearest
 from .expression import Expression, Node
-from .model import Claim, Quantity, Range, Requirement
-from .obligations import RANGED, Domain, Obligations
+from .model import Claim, Quantity, Range, Requirement, Stance
+from .obligations import Domain, Obligations
 
 MOST_STATES = 6
 MOST_STANCES = 16
@@ -18,8 +18,7 @@ MOST_STANCES = 16
 def varied(claim: Claim, number: int) -> Claim:
     """The claim with what `over` of a requirement says for its ranges (proofs/obligations.md)."""
     r = claim.requirements[number - 1]
-    stance, uncertain = claim.stances[0], dict(claim.uncertain)
-    states = {n: replace(q, range=r.over[n]) if n in r.over else q for n, q in stance.states.items()}
+    uncertain, states = dict(claim.uncertain), claim.stances[0].states
     for name, given in r.over.items():
         if name in uncertain:
             uncertain[name] = replace(uncertain[name], range=given, values=None)
@@ -30,9 +29,14 @@ def varied(claim: Claim, number: int) -> Claim:
         constants={n: e for n, e in claim.constants.items() if n not in r.over},
         gains={n: e for n, e in claim.gains.items() if n not in r.over},
         uncertain=uncertain,
-        stances=(replace(stance, states=states),),
+        stances=tuple(_over_states(s, r) if r.stance in (None, s.name) else s for s in claim.stances),
         requirements=tuple(replace(x, over={}) if x is r else x for x in claim.requirements),
     )
+
+
+def _over_states(stance: Stance, r: Requirement) -> Stance:
+    states = {n: replace(q, range=r.over[n]) if n in r.over else q for n, q in stance.states.items()}
+    return replace(stance, states=states)
 
 
 def narrowed(claim: Claim, gain: str, low: Fraction, high: Fraction) -> Claim:
@@ -61,7 +65,7 @@ def of_stance(claim: Claim, name: str) -> Claim:
     (stance,) = [s for s in claim.stances if s.name == name]
     states = {x: stance.states[x] for x in claim.stances[0].states}
     asked = tuple(replace(r, stance=None) if r.stance == name else r for r in claim.requirements)
-    alone = replace(stance, name="", then=(), mirror=(), states=states)
+    alone = replace(stance, name="", then=(), states=states)
     return replace(claim, stances=(alone,), requirements=asked)
 
 
@@ -78,8 +82,8 @@ def not_yet(claim: Claim) -> str | None:
     several = len(stance.states) > 1
     if len(stance.states) > MOST_STATES:
         return f"state: {len(stance.states)} states; claims of up to {MOST_STATES} states can be proved"
-    if several and claim.route not in ("best", "slope"):
-        return f"route: {claim.route} is known for a single state; use slope or best"
+    if several and claim.route not in ("best", "slope", "split"):
+        return f"route: {claim.route} is known for a single state; use slope, split or best"
     if claim.horizon > 1 and any(q.within for q in claim.uncertain.values()):
         return "horizon: a signal within the stance is followed for one step at a time only; remove the key"
     if claim.horizon > 1 and any(q.change is not None and q.values is not None for q in claim.uncertain.values()):
@@ -99,12 +103,11 @@ def not_yet(claim: Claim) -> str | None:
         if low != high:
             return f"metric.weights.{s}: a weight is used exactly; state a rational number"
     for number, r in enumerate(claim.requirements, 1):
-        if several and r.during:
-            return f"require[{number}]: a push during the stance can be proved for a single state only, yet"
-        if r.during and stance.dynamics is not None:
+        if r.during and r.stance is None and stance.dynamics is not None:
             try:
                 o = Obligations(claim)
-                o.growth(Domain("region", Fraction(0), (Fraction(0), Fraction(0))))
+                for s in o.states:
+                    o.growth(Domain("region", Fraction(0), (Fraction(0), Fraction(0))), s, r.state or "")
             except Bad as problem:
                 return f"require[{number}]: {problem}"
         folded, ends = _folded(claim, r)
@@ -132,15 +135,10 @@ def _not_between(claim: Claim) -> str | None:
     """What of a claim of named stances cannot be proved yet."""
     if len(claim.stances) > MOST_STANCES:
         return f"stance: {len(claim.stances)} stances; claims of up to {MOST_STANCES} stances can be proved"
-    if claim.route not in ("best", "slope"):
-        return f"route: {claim.route} is not known between stances yet; use slope or best"
+    if claim.route not in ("best", "slope", "split"):
+        return f"route: {claim.route} is not known between stances yet; use slope, split or best"
     if claim.horizon != 1:
         return f"horizon: {claim.horizon}; between stances one step at a time can be proved yet; remove the key"
-    for number, r in enumerate(claim.requirements, 1):
-        if r.during:
-            return f"require[{number}]: a push during the stance cannot be proved between stances yet"
-        if r.over and r.kind not in RANGED:
-            return f"require[{number}].over: ranges for a set and gain of its own cannot be proved between stances yet"
     return None
 
 

@@ -139,7 +139,7 @@ def draws_in(
     w, lines, whole = a.writer, a.writer.proof.lines, a.writer.domain(on)
     if whole is None or len(wide) > MOST_STATES or any(q.within for q in a.claim.uncertain.values()):
         return
-    rules = [n for n, x in lines.items() if x.part == w.part and x.rule in BOUNDS and x.domain in (whole, whole.of)]
+    rules = [n for n, x in lines.items() if x.part == w.part and x.proves in BOUNDS and x.domain in (whole, whole.of)]
     search = a.searched(JOINED, domain, box(wide), max(a.gap / 4, look.gap), look.leaves)
     bits, began = 0 if w.exact("slopes", on) and w.exact("misses", on) else BITS, time.monotonic()
     try:

@@ -16,15 +16,18 @@ from ..certificate.graph import Basis, GraphWriter, Step
 from ..certificate.results import assembled
 from ..certificate.stances import StanceRemarks
 from ..checker.derive import Derivation
+from ..checker.graph import of_ranges
 from ..checker.graph_outcomes import results_of
 from ..checker.rules import Proof, Rejected, proof_of
 from ..checker.statement import read_statement
-from ..claim import Claim
+from ..checker.theorems import Variant
+from ..claim import Bad, Claim
 from ..claim.obligations import RANGED, Domain
+from ..claim.provable import varied
 from ..contraction.graph import Family, Samples, bounds, families, radii
 from ..contraction.norms import floats
-from .one import COARSE, DECIDED, Attempt, Known
-from .several import SHARES, SPARE
+from .one import COARSE, DECIDED, Attempt, Known, apart
+from .several import SHARES, SPARE, identity
 from .stances import StanceSearch, StepSearch
 
 TRIED = 6  # families of norms, the best by samples first
@@ -49,24 +52,28 @@ class GraphAttempt(Attempt):
             sharp,
             variant,
         )
-        self.proof: Proof = proof_of(read_statement(claim.text, claim.settings, claim.data))
+        statement = read_statement(claim.text, claim.settings, claim.data)
+        self.proof: Proof = proof_of(of_ranges(statement, variant) if variant else statement)
         self.raw: list[dict[str, Any]] = []
         self.writer = GraphWriter(self.proof, self.raw, "")
         self.enclosers: list[Encloser] = []
         self.smaller, self.curve_may_help = None, False
-        flows = known if known is not None else {}
+        self.known = known if known is not None else {}
         self.stances: dict[str, StanceSearch] = {}
-        for n, s in enumerate(claim.stances):
-            each: Known = {0: flows[n]} if n in flows else {}
-            self.stances[s.name] = StanceSearch(claim, s, self.writer, gap, until, watch, self.enclosers, each)
+        for n, s in enumerate(claim.stances, variant * len(claim.stances)):
+            each: Known = {variant: self.known[n]} if n in self.known else {}
+            self.stances[s.name] = StanceSearch(claim, s, self.writer, gap, until, watch, self.enclosers, each, variant)
             if each:
-                flows[n] = each[0]
+                self.known[n] = each[variant]
         self.steps = {
             (s.name, t): StepSearch(self.stances[s.name], self.stances[t], until, self.enclosers)
             for s in claim.stances
             for t in s.then
         }
+        self.routes, self.leading = self._known_routes(), "slope"
         self._prove()
+        for number in () if variant else apart(claim):
+            self._over(number)
         self.results = results_of(self.proof)
         limits = {f"{x.writer.named(n)}": y for x in self.stances.values() for n, y in x.ranges.limits.items()}
         limits |= {f"{s}>{t}:{n}": y for (s, t), x in self.steps.items() for n, y in x.ranges.limits.items()}
@@ -79,6 +86,18 @@ class GraphAttempt(Attempt):
         self.decided = sum(r.verdict != "undecided" for r in self.results.requirements)
         text = assembled(claim, self.results, remarks)
         self.certificate = sealed(claim, text, self.writer.pruned(self.results.needed), self.ranges.interrupted)
+
+    def _known_routes(self) -> list[str]:
+        """The routes that gain and residual may come from: split where every step can be told apart from it."""
+        if not self.claim.correction:
+            return ["slope"]
+        try:
+            for x in self.steps.values():
+                x.matrices("split-slopes", self._around(x.before))
+        except Bad as why:  # the rates of a stance rest on the correction
+            self.enclosers[0].limits["split"] = str(why)
+            return ["slope"]
+        return ["slope", "split"]
 
     def _prove(self) -> None:
         """Sets and norms of all stances, gain and residual of every step, bounds, and what is asked."""
@@ -97,23 +116,51 @@ class GraphAttempt(Attempt):
             o = x.obligations
             for k in range(1, len(o.motion.positive) + 1 if o.motion is not None else 1):
                 x.ranges.enclose(o.support(k, x.domain), on[s], gap=DECIDED, side=-1)
+            x._growth(x.domain, on[s])
         moves = {s: x._movements() for s, x in each.items()}
-        lines: dict[Step, int] = {}
-        for (s, t), step in self.steps.items():
-            moving = moves[t]
-            found = step.proved(norms[t], on[s], moving) if moving is not None else None
-            if found is not None:
-                lines[s, t] = found
-        if len(lines) == len(self.steps):
+        for (_, t), step in self.steps.items():
+            step.into(norms[t])
+        pairs = {route: lines for route in self.routes if (lines := self._stepped(route, on, moves)) is not None}
+        for lines in pairs.values():
             if invariant is None:
                 invariant = self._balls([sets[s] for s in each], lines)
-            if invariant is not None:
-                w.bound(invariant, lines)
-                self._compared(invariant, on, moves)
+        if invariant is not None:
+            for route, lines in pairs.items():
+                w.bound(invariant, lines, route)
+                self._compared(invariant, on, moves, route)
         for k, r in enumerate(self.claim.requirements, 1):
             for s, x in each.items():
-                if r.kind in RANGED and r.stance in (None, s):
+                if r.kind in RANGED and r.stance in (None, s) and not self.variant:
                     x._ranged(k, x.domain, on[s], points=True)
+
+    def _stepped(
+        self, route: str, on: Mapping[str, int], moves: Mapping[str, list[int] | None]
+    ) -> dict[Step, int] | None:
+        """Gain and residual of every step by a route; None where one has none, or they do not contract together."""
+        if route == "split" and not self._contracts(route):
+            for (s, _), step in self.steps.items() if any(r.kind == "gain" for r in self.claim.requirements) else ():
+                step.touched(on[s], route)
+            return None
+        found = {}
+        for (s, t), step in self.steps.items():
+            moving = moves[t]
+            line = None if moving is None else step.proved(on[s], moving, route)
+            if line is not None:
+                found[s, t] = line
+        return found if len(found) == len(self.steps) else None
+
+    def _contracts(self, route: str) -> bool:
+        """Whether samples over the sets leave it open that the steps contract together."""
+        rng = np.random.default_rng(0)
+        taken = {e: x.samples(x.before.domain, rng, route, x.before.norm) for e, x in self.steps.items()}
+        return bounds(self._in_norms(taken), list(self.stances)) is not None
+
+    def _over(self, number: int) -> None:
+        """A requirement over ranges of its own: a proof of the same kind, whose lines are taken in."""
+        claim = varied(self.claim, number)
+        own = GraphAttempt(claim, self.gap, self.until, self.watch, self.sharp, None, number, known=self.known)
+        self.enclosers[0].interrupted |= own.ranges.interrupted
+        self.writer.adopt(own.writer, Variant(0, number), own.results.needed)
 
     def _regions(self, norms: Mapping[str, int], images: Mapping[str, list[int]] | None) -> int | None:
         """The regions are mapped into those that follow, if their images show it: proofs/graph.md (3a)."""
@@ -149,19 +196,20 @@ class GraphAttempt(Attempt):
         room = {s: np.array(x.room) for s, x in self.stances.items()}
         weights = next(iter(self.stances.values()))._weights()
         rng = np.random.default_rng(0)
-        samples = {e: x.samples(self._around(x.before), rng) for e, x in self.steps.items()}
-        tried: list[tuple[tuple[int, float], int, Family]] = []
-        for n, family in enumerate(families(samples, room, self.claim.metric, weights)):
-            rank = self._by_samples(samples, family, regions)
-            if rank is not None:
-                tried.append((rank, n, family))
+        tried: list[tuple[tuple[int, float], int, str, Family]] = []
+        for route in self.routes:
+            samples = {e: x.samples(self._around(x.before), rng, route) for e, x in self.steps.items()}
+            for n, family in enumerate(families(samples, room, self.claim.metric, weights)):
+                rank = self._by_samples(samples, family, regions)
+                if rank is not None:
+                    tried.append((rank, n, route, family))
         tried.sort(key=lambda x: x[:2])
         best: tuple[float, Family] | None = None
-        for _, _, family in tried[:TRIED]:
+        for _, _, route, family in tried[:TRIED]:
             self._take(family)
-            size = self._size_of({e: x.pair() for e, x in self.steps.items()}, regions)
+            size = self._size_of({e: x.pair(route) for e, x in self.steps.items()}, regions)
             if best is None or size < best[0]:
-                best = size, family
+                best, self.leading = (size, family), route
             if size < np.inf and (regions or len(tried) == 1 or size < 0.9):
                 break
         self._take({s: x._plain() for s, x in self.stances.items()} if best is None else best[1])
@@ -182,19 +230,24 @@ class GraphAttempt(Attempt):
             self._take(family)
         except Rejected:
             return None
-        pairs = {}
-        for (s, t), x in samples.items():
-            v, left = floats(self.stances[t].norm.rows), floats(self.stances[s].norm.inverse)
-            a, m = v @ x.jacobians @ left, x.misses @ v.T
-            round_ = family[s].kind == "ellipsoid"
-            sizes = np.linalg.norm(a, 2, axis=(1, 2)) if round_ else np.abs(a).sum(axis=2).max(axis=1)
-            lengths = np.linalg.norm(m, axis=1) if round_ else np.abs(m).max(axis=1)
-            pairs[s, t] = float(sizes.max(initial=0.0)), float(lengths.max(initial=0.0))
+        pairs = self._in_norms(samples)
         size = self._size_of(pairs, regions)
         if size < np.inf:
             return 0, size
         found = bounds(pairs, list(self.stances))
         return (2, max(k for k, _ in pairs.values())) if found is None else (1, self._share(found))
+
+    def _in_norms(self, samples: Mapping[Step, Samples]) -> dict[Step, tuple[float, float]]:
+        """Gain and residual of every step that samples show in the norms taken: from below."""
+        pairs = {}
+        for (s, t), x in samples.items():
+            v, left = floats(self.stances[t].norm.rows), floats(self.stances[s].norm.inverse)
+            a, m = v @ x.jacobians @ left, x.misses @ v.T
+            round_ = self.stances[t].norm.kind == "ellipsoid"
+            sizes = np.linalg.norm(a, 2, axis=(1, 2)) if round_ else np.abs(a).sum(axis=2).max(axis=1)
+            lengths = np.linalg.norm(m, axis=1) if round_ else np.abs(m).max(axis=1)
+            pairs[s, t] = float(sizes.max(initial=0.0)), float(lengths.max(initial=0.0))
+        return pairs
 
     def _share(self, bound: Mapping[str, float]) -> float:
         """The largest share of its room that a bound takes."""
@@ -236,24 +289,25 @@ class GraphAttempt(Attempt):
         """Gain and residual of every step over balls of these radii, a little too large (estimates)."""
         for s, x in self.stances.items():
             x.domain = x._within(x.norm, Fraction(wanted[s]))
-        each = {e: x.pair() for e, x in self.steps.items()}
+        each = {e: x.pair(self.leading) for e, x in self.steps.items()}
         return {e: (k * (1 + 1e-6), y * (1 + 1e-6)) for e, (k, y) in each.items()}
 
-    def _compared(self, invariant: int, on: Mapping[str, int], moves: Mapping[str, list[int] | None]) -> None:
+    def _compared(
+        self, invariant: int, on: Mapping[str, int], moves: Mapping[str, list[int] | None], route: str
+    ) -> None:
         """Comparisons entry by entry: in the states themselves, and in the bases of the norms."""
-        n = len(next(iter(self.stances.values())).obligations.states)
-        one = tuple(tuple(Fraction(int(i == j)) for j in range(n)) for i in range(n))
+        one = identity(len(next(iter(self.stances.values())).obligations.states))
         plain: dict[str, Basis] = dict.fromkeys(self.stances, (one, one))
         normed: dict[str, Basis] = {s: (x.norm.rows, x.norm.inverse) for s, x in self.stances.items()}
         for bases in [plain] if plain == normed else [plain, normed]:
             tables: dict[Step, tuple[int, int]] = {}
             for (s, t), step in self.steps.items():
-                pair = step.tables(on[s], bases[s], bases[t])
+                pair = step.tables(on[s], bases[s], bases[t], route)
                 if pair is not None:
                     tables[s, t] = pair
             if len(tables) == len(self.steps):
                 moving = [n for s in self.stances for n in moves[s] or []]
-                self.writer.compared(invariant, tables, moving, bases)
+                self.writer.compared(invariant, tables, moving, bases, route)
 
 
 def _short(x: float) -> Fraction:

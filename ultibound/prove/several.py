@@ -19,11 +19,12 @@ from ..certificate.enclosing import BITS, TWICE, Proved
 from ..certificate.lines import downward, upward
 from ..certificate.norms import NormWriter, moves_of
 from ..certificate.several import SeveralRemarks
+from ..checker.jacobians import OF_ROUTE, sloped
 from ..checker.matrices import Leaf, Matrix, Metric, metric
 from ..checker.numerals import decimal_up
 from ..checker.reals import Undefined
 from ..checker.rules import Rejected
-from ..claim import ClaimError
+from ..claim import Bad, ClaimError
 from ..claim.constants import constant
 from ..claim.obligations import RANGED, Domain, Obligation, Variable, together
 from ..contraction.metrics import Proposal, proposals
@@ -31,7 +32,7 @@ from ..contraction.norms import Matrices, Norm, Stretched, floats, stretched
 from ..contraction.rounds import MOST_HELD, Map, courses
 from ..contraction.samples import combinations, drawn
 from ..contraction.words import Word, fastest
-from .closing import closed_in
+from .closing import Table, closed_in
 from .one import COARSE, DECIDED, Attempt
 
 if TYPE_CHECKING:
@@ -69,6 +70,7 @@ class SeveralAttempt(Attempt):
         self._flow()
         self.leaves: dict[str, list[Leaf]] = {}
         self.targets = [self._target(s) for s in o.states]
+        self.routes = self._known_routes()
         images = self._images()
         self._settled(images)
         number = w.metric(self.chosen.kind, self.chosen.rows, self.chosen.inverse)
@@ -84,24 +86,55 @@ class SeveralAttempt(Attempt):
         way, through = self._course(self.domain, ball, on, lambda j: self._step(j, on, moves), self._largest(self.norm))
         for k in range(1, len(o.motion.positive) + 1 if o.motion is not None else 1):
             self.ranges.enclose(o.support(k, through), way, gap=DECIDED, side=-1)
+        self._growth(self.domain, on)
         lost = way == on == ball and self.claim.horizon > 1  # steps within a horizon may leave the region
-        slopes, misses = (None, None) if lost else (self._norm("slopes", on), self._norm("misses", on))
-        pair = self._contraction(slopes, misses, moves)
-        self._growing(on, pair)
-        tables = self._entries(slopes, misses, on)
-        invariant = on if images is not None else self._kept(ball, pair, tables, moves)
-        if invariant is not None and pair is not None:
-            self._bound(invariant, pair)
-        if invariant is not None and moves is not None:
-            for table in tables:
-                w.componentwise(invariant, *table, moves)
-            if slopes is not None and misses is not None:
-                closed_in(self, invariant, slopes, misses, moves, list(self._bases()))
-            if pair is not None:
-                self._orbits([invariant, pair])
+        known = [] if lost else self.routes
+        taken = {x: norms for x in known if (norms := self._taken(x, on)) is not None}
+        pairs = {x: n for x, norms in taken.items() if (n := self._contraction(x, norms, moves)) is not None}
+        for x in ("slope", "split") if self.claim.correction else ("slope",):
+            self._growing(on, pairs.get(x), OF_ROUTE[x][0])
+        tables = {x: self._entries(x, norms, on) for x, norms in taken.items()}
+        kept = self._kept(ball, list(pairs.values()), tables.get("slope", []), moves) if images is None else on
+        for pair in pairs.values():
+            if kept is not None:
+                self._bound(kept, pair)
+        if kept is not None and moves is not None:
+            for table in (table for each in tables.values() for table in each):
+                w.componentwise(kept, *table, moves)
+            if "slope" in taken:
+                closed_in(self, kept, *taken["slope"], moves, list(self._bases()))
+            if "slope" in pairs:
+                self._orbits([kept, pairs["slope"]])
         for k, r in enumerate(self.claim.requirements, 1):
             if r.kind in RANGED and not self.variant:
                 self._range(k, through, way, self.domain, on)
+
+    def _known_routes(self) -> list[str]:
+        """The routes that gain and residual may come from, the one that is asked for first.
+
+        Where split has a slope that no norm makes less than 1, as with one correction of several states, it says
+        nothing.
+        """
+        if not self.claim.correction:
+            return ["slope"]
+        spans = tuple((t.lower, t.upper) for t in self.targets)
+        try:
+            matrices = self.matrices("split-slopes", Domain("region", Fraction(0), spans[0], targets=spans))
+        except Bad as why:  # the rates of a stance rest on the correction
+            self.ranges.limits["split"] = str(why)
+            return ["slope"]
+        still = {
+            s: (to_float(low) + to_float(high)) / 2
+            for s, (low, high) in zip(self.obligations.states, spans, strict=True)
+        }
+        at = drawn(Obligation("samples", 0, "", tuple(matrices.variables), False), SAMPLES, np.random.default_rng(0))
+        for k, v in enumerate(matrices.variables):
+            at[:, k] = still.get(v.name, at[:, k])
+        found = matrices.at(at)
+        good = found[np.isfinite(found).all(axis=(1, 2))]
+        if not len(good) or np.abs(np.linalg.eigvals(good)).max() > SPARE:
+            return ["slope"]
+        return ["split", "slope"] if self.claim.route == "split" else ["slope", "split"]
 
     def _images(self) -> list[int] | None:
         """The lines that the region is mapped into itself, state by state, where it is: invariant-set.md (1)."""
@@ -125,21 +158,25 @@ class SeveralAttempt(Attempt):
         """The metric, and the set it is one of: `chosen`, `norm`, `domain`."""
         n = len(self.obligations.states)
         spans = tuple((t.lower, t.upper) for t in self.targets)
-        domain = Domain("region", Fraction(0), spans[0], targets=spans)
+        domain = region = Domain("region", Fraction(0), spans[0], targets=spans)
+        self.leading = self.routes[0]
         best: tuple[float, Proposal, Metric, Domain, int] | None = None
-        for _ in range(1 if images is not None else LOOKS):
-            proposed = self._proposed(domain)
+        looks = [route for route in self.routes for _ in range(1 if images is not None else LOOKS)]
+        for k, route in enumerate(looks):
+            proposed = self._proposed(domain, route)
             for p, cells in [*((p, FEWER) for p in proposed), *((p, FEW) for p in proposed)]:
                 if cells == FEW and best is not None and best[0] < np.inf:
                     break
                 norm = metric(p.kind, p.rows, p.inverse, n)
                 ball = self._within(norm, self._largest(norm))
-                size = self._size(p, ball, cells) if images is None else 0.0  # the region is the set in any metric
+                fits = p.gain < 1 or len(looks) == 1  # the region is the set in any metric
+                size = self._size(p, ball, route, cells) if images is None else 0.0 if fits else np.inf
                 if best is None or size < best[0] * NOTABLE:
-                    best = size, p, norm, ball, self.needed
+                    best, self.leading = (size, p, norm, ball, self.needed), route
             if best is not None and best[0] < np.inf:
                 break
-            domain = best[3] if best is not None else domain
+            again = k + 1 < len(looks) and looks[k + 1] == route
+            domain = best[3] if best is not None and again else region
         if best is None:
             p = self._plain()
             norm = metric(p.kind, p.rows, p.inverse, n)
@@ -171,21 +208,21 @@ class SeveralAttempt(Attempt):
         """A smaller ball that is kept, if the largest is not."""
         for share in SHARES:
             smaller = self._within(self.norm, Fraction(f"{to_float(self.domain.radius) * share:.4g}"))
-            if self._size(self.chosen, smaller, FEW) < np.inf:
+            if self._size(self.chosen, smaller, self.leading, FEW) < np.inf:
                 self.domain, self.shrunk = smaller, True
                 return
 
-    def _proposed(self, domain: Domain) -> list[Proposal]:
-        """Metrics proposed from samples of Jacobians and misses over a set (estimates)."""
+    def _proposed(self, domain: Domain, route: str) -> list[Proposal]:
+        """Metrics proposed from samples of what a route takes over a set (estimates)."""
         rng = np.random.default_rng(0)
         room = np.array([to_float(x) for x in self.rooms()])
         # a target on the edge: any scale will do
         room = np.where(room > 0, room, max(float(room.max()), 0.0) or 1.0)
         weights, asked = self._weights(), self.claim.metric
         self.others, found = [], list[Proposal]()
-        for steps in ("@1", "") if self.claim.horizon > 1 else ("",):  # each of the steps has to keep the ball as well
-            slopes, misses = self.matrices(f"slopes{steps}", domain), self.matrices(f"misses{steps}", domain)
-            jacobians, missed = (self.sampled(m, rng) for m in (slopes, misses))
+        early = self.claim.horizon > 1 and route == "slope"
+        for steps in ("@1", "") if early else ("",):  # each of the steps has to keep the ball as well
+            jacobians, missed = (self.sampled(self.matrices(f"{x}{steps}", domain), rng) for x in OF_ROUTE[route])
             self.others += [scaled(p) for p in proposals(jacobians, missed[:, :, 0], room)]
             if weights is not None:
                 found += proposals(jacobians, missed[:, :, 0], room, "box", weights)
@@ -224,6 +261,10 @@ class SeveralAttempt(Attempt):
         rows = [[self._miss(s, int(after or 0))] for s in o.states]
         if kind == "slopes":
             rows = [[o.slope(domain, s, x, int(after or 0)) for x in o.states] for s in o.states]
+        elif kind == "split-slopes":
+            rows = [[o.split_slope(domain, s, x) for x in o.states] for s in o.states]
+        elif kind == "split-residuals":
+            rows = [[self._kept_by_gait(domain, s)] for s in o.states]
         elif kind == JOINED:
             rows = [[*(o.slope(domain, s, x) for x in o.states), self._miss(s)] for s in o.states]
         ready = [[(x, self.ranges.runner(x, False)) for x in row] for row in rows]
@@ -235,9 +276,12 @@ class SeveralAttempt(Attempt):
     def _miss(self, s: str, steps: int = 0) -> Obligation:
         return self.obligations.miss(s, steps)
 
+    def _kept_by_gait(self, domain: Domain, s: str) -> Obligation:
+        return self.obligations.split_residual(domain, s)
+
     def _form(self, proves: str, norm: Metric) -> Norm:
         """The norm in which a matrix is seen."""
-        inverse = floats(norm.inverse) if proves.startswith("slopes") else None
+        inverse = floats(norm.inverse) if sloped(proves) else None
         if proves == JOINED:
             inverse = np.diag([*np.diag(floats(norm.inverse)), 1.0])
         return Norm(floats(norm.rows), inverse, norm.kind == "ellipsoid")
@@ -268,11 +312,14 @@ class SeveralAttempt(Attempt):
         cells: int,
         enough: float = -np.inf,
         later: float = 0.0,
+        form: Norm | None = None,
     ) -> Stretched:
+        """`form`: the norm in which the matrix is seen, where it is not the set's own."""
+
         def watch(leaves: int, high: float) -> None:
             self.watch(f"{proves} of {len(self.obligations.states)} states", leaves, high)
 
-        matrices, form = self.matrices(proves, domain, norm), self._form(proves, norm)
+        matrices, form = self.matrices(proves, domain, norm), form or self._form(proves, norm)
         effort = Effort(gap, cells, self.ranges.until - self.ranges.spent, watch, later=later)
         try:
             return stretched(matrices, form, effort, enough)
@@ -280,15 +327,16 @@ class SeveralAttempt(Attempt):
             self.ranges.interrupt()
             return stretched(matrices, form, replace(effort, until=0.0), enough)
 
-    def _size(self, p: Proposal, ball: Domain, cells: int) -> float:
+    def _size(self, p: Proposal, ball: Domain, route: str, cells: int) -> float:
         """The largest share of its room that a state's bound takes; inf where the ball is not kept (estimates)."""
         norm = metric(p.kind, p.rows, p.inverse, len(self.obligations.states))
-        miss = self.searched("misses", ball, norm, COARSE, FEW).upper + self._shift(norm)
+        slopes, rest = OF_ROUTE[route]
+        miss = self.searched(rest, ball, norm, COARSE, FEW).upper + self._shift(norm)
         radius = to_float(ball.radius)
         most = SPARE - miss / radius if radius > 0 else 0.0
         if not (most > 0 and miss < np.inf):
             return np.inf
-        found = self.searched("slopes", ball, norm, COARSE, cells, most if cells == FEW else -np.inf)
+        found = self.searched(slopes, ball, norm, COARSE, cells, most if cells == FEW else -np.inf)
         k = found.upper
         if not k <= most:
             return np.inf
@@ -324,15 +372,35 @@ class SeveralAttempt(Attempt):
 
     def _step(self, steps: int, on: int, moves: list[int] | None) -> int | None:
         """Gain and residual of fewer steps than the horizon."""
-        slopes, misses = (self._norm(f"{x}@{steps}", on) for x in ("slopes", "misses"))
-        return self._contraction(slopes, misses, moves, steps)
+        found = self._taken("slope", on, f"@{steps}")
+        return None if found is None else self._contraction("slope", found, moves, steps)
+
+    def _taken(self, route: str, on: int, after: str = "") -> tuple[Table, Table] | None:
+        """The norms of both matrices of a route."""
+        slopes, rest = (self._norm(f"{x}{after}", on) for x in OF_ROUTE[route])
+        return None if slopes is None or rest is None else (slopes, rest)
+
+    def _leaves_allowed(self) -> int:
+        asked = any(r.kind in LENGTHS and r.state is None for r in self.claim.requirements)
+        cells = self.claim.cells // ((COST if asked else COST * SPARED) * len(self.obligations.states) ** 2)
+        return min(self.claim.cells, max(LEAST, self.needed, cells))
+
+    def _evenly(self, proves: str, table: Table, on: int) -> Table:
+        """Trees over whose leaves the residual of every state is close, not only the largest of all."""
+        taken = self.sampled(self.matrices(proves, self.domain, self.norm), np.random.default_rng(0))
+        sizes = np.abs(taken[:, :, 0]).max(axis=0, initial=0.0)
+        if len(sizes) == 1 or not sizes.min() > 0:
+            return table
+        even = Norm(np.diag(1 / sizes), None, False)
+        found = self.searched(proves, self.domain, self.norm, self.gap, self._leaves_allowed(), form=even)
+        with suppress(Undefined, Rejected):
+            self.leaves[proves] = self.writer.leaves(proves, found.trees, table[2], on)
+            return 0, found.trees, table[2]
+        return table
 
     def _norm(self, proves: str, on: int) -> tuple[int, tuple[str, ...], int] | None:
         """The line of a norm over the set, with a stretch that attains nearly as much; its trees and bits."""
-        w, share = self.writer, 1.0
-        asked = any(r.kind in LENGTHS and r.state is None for r in self.claim.requirements)
-        cells = self.claim.cells // ((COST if asked else COST * SPARED) * len(self.obligations.states) ** 2)
-        cells = min(self.claim.cells, max(LEAST, self.needed, cells))
+        w, share, cells = self.writer, 1.0, self._leaves_allowed()
         bits = 0 if w.exact(proves, on) else BITS
         later = TWICE * w.matrix_seconds(proves, bits, on)
         for _ in range(4):
@@ -364,26 +432,22 @@ class SeveralAttempt(Attempt):
         return line, found.trees, bits
 
     def _contraction(
-        self,
-        slopes: tuple[int, tuple[str, ...], int] | None,
-        misses: tuple[int, tuple[str, ...], int] | None,
-        moves: list[int] | None,
-        steps: int = 0,
+        self, route: str, tables: tuple[Table, Table], moves: list[int] | None, steps: int = 0
     ) -> int | None:
-        """Gain and residual in the metric: proofs/several.md (2)."""
-        if slopes is None or misses is None or moves is None:
+        """Gain and residual of a route in the metric: proofs/several.md (2)."""
+        if moves is None:
             return None
+        (slopes, *_), (rest, *_) = tables
         w, far = self.writer, dict.fromkeys(self.obligations.states, Fraction(0))
         for (s, h), n in zip(moves_of(w), moves, strict=True):
             ends = w.proof.lines[n].concludes
             far[s] += max(abs(ends["lower"]), abs(ends["upper"])) * w.derivation.change(h)[1]
-        residual = w.proof.lines[misses[0]].concludes["norm"] + self.norm.length(list(far.values()))
-        concludes = {"gain": upward(w.proof.lines[slopes[0]].concludes["norm"]), "residual": upward(residual)}
-        name = f"slope@{steps}" if steps else "slope"
-        return w.append("slope", name, [slopes[0], misses[0], *moves], {}, concludes)
+        residual = w.proof.lines[rest].concludes["norm"] + self.norm.length(list(far.values()))
+        concludes = {"gain": upward(w.proof.lines[slopes].concludes["norm"]), "residual": upward(residual)}
+        return w.append(route, f"{route}@{steps}" if steps else route, [slopes, rest, *moves], {}, concludes)
 
-    def _growing(self, on: int, pair: int | None) -> None:
-        """A product of Jacobians that refutes a gain in every norm: proofs/several.md (7)."""
+    def _growing(self, on: int, pair: int | None, proves: str) -> None:
+        """A product of a route's slopes that refutes a gain in every norm: proofs/several.md (7)."""
         upper = self.writer.proof.lines[pair].concludes["gain"] if pair is not None else None
         asked = [
             constant(r.constant, self.claim.values)[1]
@@ -393,8 +457,11 @@ class SeveralAttempt(Attempt):
         wanted = min((c for c in asked if upper is None or upper >= c), default=None)
         if wanted is None or self.ranges.interrupted or self.claim.horizon > 1:
             return
-        matrices = self.matrices("slopes", self.domain, self.norm)
-        bits = 0 if self.writer.exact("slopes", on) else BITS
+        try:
+            matrices = self.matrices(proves, self.domain, self.norm)
+        except Bad:
+            return
+        bits = 0 if self.writer.exact(proves, on) else BITS
         best: tuple[Word, list[dict[str, Fraction]]] | None = None
         for points in self._places(matrices.variables):
             at = np.array([[to_float(p[v.name]) for v in matrices.variables] for p in points])
@@ -405,7 +472,7 @@ class SeveralAttempt(Attempt):
                 best = found, [points[int(good[k])] for k in found.letters]
         if best is not None and best[0].rate >= to_float(wanted) * SPARE:
             with suppress(Undefined, Rejected):
-                self.writer.product(best[1], best[0].power, bits, on, wanted)
+                self.writer.product(proves, best[1], best[0].power, bits, on, wanted)
 
     def _places(self, variables: list[Variable]) -> Iterator[list[dict[str, Fraction]]]:
         """Points of W, each with the same held values; the states anywhere in a region, else at their targets."""
@@ -419,40 +486,36 @@ class SeveralAttempt(Attempt):
         for same in combinations([v for v in variables if v.name in held], rng)[:MOST_HELD]:
             yield [still | same | each for each in fresh]
 
-    def _entries(
-        self, slopes: tuple[int, tuple[str, ...], int] | None, misses: tuple[int, tuple[str, ...], int] | None, on: int
-    ) -> list[tuple[int, int]]:
-        """Lines of entries, of slopes and misses, a basis: proofs/several.md (3)."""
+    def _entries(self, route: str, tables: tuple[Table, Table], on: int) -> list[tuple[int, int]]:
+        """Lines of entries of both matrices of a route, a basis: proofs/several.md (3)."""
         found: list[tuple[int, int]] = []
-        if slopes is None or misses is None:
-            return found
+        if route == "split":
+            tables = tables[0], self._evenly(OF_ROUTE[route][1], tables[1], on)
         for basis in self._bases():
-            pair = []
-            for proves, (_, trees, bits) in (("slopes", slopes), ("misses", misses)):
-                pair.append(self.writer.entries(proves, trees, bits, on, self.leaves[proves], basis))
-            found.append((pair[0], pair[1]))
+            slopes, rest = (
+                self.writer.entries(proves, trees, bits, on, self.leaves[proves], basis)
+                for proves, (_, trees, bits) in zip(OF_ROUTE[route], tables, strict=True)
+            )
+            found.append((slopes, rest))
         return found
 
     def _bases(self) -> Iterator[tuple[Matrix, Matrix]]:
         """Bases for a comparison: the states themselves, the rows of the metric, the other metrics proposed."""
-        n = len(self.obligations.states)
-        identity = tuple(tuple(Fraction(int(i == j)) for j in range(n)) for i in range(n))
-        seen = [identity]
-        yield identity, identity
+        one = identity(len(self.obligations.states))
+        seen = [one]
+        yield one, one
         others = [(p.rows, p.inverse) for p in self.others if p.kind == "polytope"][:MOST_BASES]
         for rows, inverse in [(self.norm.rows, self.norm.inverse), *others]:
             if rows not in seen:
                 seen.append(rows)
                 yield rows, inverse
 
-    def _kept(self, ball: int, pair: int | None, tables: list[tuple[int, int]], moves: list[int] | None) -> int | None:
-        """The ball is mapped into itself: by its norm, or row by row in its own basis."""
+    def _kept(self, ball: int, pairs: list[int], tables: list[tuple[int, int]], moves: list[int] | None) -> int | None:
+        """The ball is mapped into itself: by its norm and a route, or row by row in its own basis."""
         w = self.writer
-        if pair is not None:
-            try:
+        for pair in pairs:
+            with suppress(Rejected):
                 return w.append("invariant-ball", "invariant", [ball, pair], {}, {})
-            except Rejected:
-                pass
         for table in tables if moves is not None else ():
             try:
                 return w.append("invariant-rows", "invariant", [ball, *table, *(moves or [])], {}, {})
@@ -488,6 +551,10 @@ class SeveralAttempt(Attempt):
         return SeveralRemarks(
             self.claim, self.obligations, self.results, self.ranges.limits, self.ranges.interrupted
         ).all()
+
+
+def identity(n: int) -> Matrix:
+    return tuple(tuple(Fraction(int(i == j)) for j in range(n)) for i in range(n))
 
 
 def scaled(p: Proposal) -> Proposal:

@@ -2,13 +2,18 @@
 
 from __future__ import annotations
 
+from contextlib import suppress
+
 import numpy as np
 
 from ..bounding.evaluate import to_float
-from ..certificate.enclosing import Encloser, Watch
+from ..certificate.enclosing import BITS, Encloser, Watch
 from ..certificate.graph import Basis, StanceWriter, StepWriter
 from ..certificate.lines import upward
+from ..checker.jacobians import OF_ROUTE, sloped
 from ..checker.matrices import Metric, metric
+from ..checker.reals import Undefined
+from ..checker.rules import Rejected
 from ..checker.several import moved
 from ..claim import Claim
 from ..claim.graph import Graph
@@ -19,7 +24,9 @@ from ..contraction.graph import Samples
 from ..contraction.metrics import Proposal
 from ..contraction.norms import Norm, floats
 from .one import COARSE, Known
-from .several import FEW, SeveralAttempt
+from .several import FEW, LEAST, SeveralAttempt
+
+Tabled = tuple[int, tuple[str, ...], int]  # line, trees, bits
 
 
 class Shared(Encloser):
@@ -47,11 +54,11 @@ class StanceSearch(SeveralAttempt):
 
     def __init__(
         self, claim: Claim, stance: Stance, whole: StanceWriter, gap: float, until: float, watch: Watch,
-        others: list[Encloser], known: Known,
+        others: list[Encloser], known: Known, variant: int = 0,
     ) -> None:  # fmt: skip
-        """`whole`: the proof of all stances; `others`: the ranges of all of them, so far."""
+        """`whole`: the proof of all stances; `others`: the ranges of all of them, so far; else as in `Attempt`."""
         self.claim, self.gap, self.until, self.watch = of_stance(claim, stance.name), gap, until, watch
-        self.stance, self.variant, self.known, self.terse = stance, 0, known, False
+        self.stance, self.variant, self.known, self.terse = stance, variant, known, False
         self.obligations, self.writer = Obligations(self.claim), StanceWriter(whole.proof, whole.raw, stance.name)
         self.ranges = Shared(self.claim, self.obligations.graph, self.writer, gap, until, watch, others)
         self._flow()
@@ -106,50 +113,65 @@ class StepSearch(SeveralAttempt):
         graph, writer = self.obligations.graph, before.writer
         self.ranges = Shared(self.claim, graph, writer, self.gap, until, self.watch, others)
         self.ranges.flows, self.leaves, self.needed = before.ranges.flows, {}, 0
-        self.targets = before.targets
+        self.targets, self.tabled = before.targets, dict[str, tuple[Tabled, Tabled]]()
 
     def _miss(self, s: str, steps: int = 0) -> Obligation:
         return self.obligations.miss(s, steps, self.after.obligations.stance)
 
+    def _kept_by_gait(self, domain: Domain, s: str) -> Obligation:
+        return self.obligations.split_residual(domain, s, self.after.obligations.stance)
+
     def _form(self, proves: str, norm: Metric) -> Norm:
-        inverse = floats(norm.inverse) if proves == "slopes" else None
+        inverse = floats(norm.inverse) if sloped(proves) else None
         return Norm(floats(self.after.norm.rows), inverse, norm.kind == "ellipsoid")
 
     def _shift(self, norm: Metric) -> float:
         return self.after._shift(norm)
 
-    def samples(self, domain: Domain, rng: np.random.Generator) -> Samples:
-        jacobians, misses = (self.sampled(self.matrices(x, domain), rng) for x in ("slopes", "misses"))
+    def samples(self, domain: Domain, rng: np.random.Generator, route: str, norm: Metric | None = None) -> Samples:
+        jacobians, misses = (self.sampled(self.matrices(x, domain, norm), rng) for x in OF_ROUTE[route])
         return Samples(jacobians, misses[:, :, 0])
 
-    def pair(self) -> tuple[float, float]:
+    def pair(self, route: str) -> tuple[float, float]:
         """Gain and residual over the ball of the stance (estimates); inf where they have no value."""
         found, domain = [], self.before.domain
-        for proves in ("misses", "slopes"):
+        for proves in reversed(OF_ROUTE[route]):
             search = self.searched(proves, domain, self.before.norm, COARSE, FEW)
             self.needed = max(self.needed, search.leaves)
             found.append(search.upper)
         return found[1], found[0] + self._shift(self.after.norm)
 
-    def proved(self, norm: int, on: int, moves: list[int]) -> int | None:
-        """The line of gain and residual of the step."""
+    def into(self, norm: int) -> None:
+        """Takes the sets as they are now; `norm`: the line of the metric of the stance that follows."""
         self.writer = StepWriter(self.before.writer, self.after.writer, norm)
         self.domain, self.norm = self.before.domain, self.before.norm
-        self.slopes, self.misses = self._norm("slopes", on), self._norm("misses", on)
-        if self.slopes is None or self.misses is None:
+
+    def proved(self, on: int, moves: list[int], route: str) -> int | None:
+        """The line of gain and residual of the step by a route."""
+        slopes, rest = (self._norm(x, on) for x in OF_ROUTE[route])
+        if slopes is None or rest is None:
             return None
+        self.tabled[route] = slopes, rest if route == "slope" else self._evenly(OF_ROUTE[route][1], rest, on)
         w, d = self.writer, self.after.writer.derivation
         far = moved(d, [w.proof.lines[n] for n in moves])
-        residual = w.proof.lines[self.misses[0]].concludes["norm"] + self.after.norm.length(far)
-        concludes = {"gain": upward(w.proof.lines[self.slopes[0]].concludes["norm"]), "residual": upward(residual)}
-        return w.append("slope", "slope", [self.slopes[0], self.misses[0], *moves], {}, concludes)
+        residual = w.proof.lines[rest[0]].concludes["norm"] + self.after.norm.length(far)
+        concludes = {"gain": upward(w.proof.lines[slopes[0]].concludes["norm"]), "residual": upward(residual)}
+        return w.append(route, route, [slopes[0], rest[0], *moves], {}, concludes)
 
-    def tables(self, on: int, before: Basis, after: Basis) -> tuple[int, int] | None:
-        """The lines of entries of slopes and misses in a basis of each of the two stances."""
-        if self.slopes is None or self.misses is None:
+    def touched(self, on: int, route: str) -> None:
+        """How far a direction is surely stretched, where that is all there is to say of a route."""
+        proves = OF_ROUTE[route][0]
+        found = self.searched(proves, self.domain, self.norm, COARSE, LEAST)
+        with suppress(Undefined, Rejected, ZeroDivisionError):
+            bits = 0 if self.writer.exact(proves, on) else BITS
+            self.writer.stretch(proves, found.point, found.direction, bits, on)
+
+    def tables(self, on: int, before: Basis, after: Basis, route: str) -> tuple[int, int] | None:
+        """The lines of entries of both matrices of a route in a basis of each of the two stances."""
+        if route not in self.tabled:
             return None
-        found = [
+        slopes, rest = (
             self.writer.table(proves, known[1], known[2], on, self.leaves[proves], before, after)
-            for proves, known in (("slopes", self.slopes), ("misses", self.misses))
-        ]
-        return found[0], found[1]
+            for proves, known in zip(OF_ROUTE[route], self.tabled[route], strict=True)
+        )
+        return slopes, rest

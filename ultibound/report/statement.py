@@ -141,6 +141,11 @@ def _map(claim: Claim, stance: Stance) -> list[Block]:
                 "that stance."
             )
         )
+    if stance.mirror:
+        turned = _joined([symbol(s) for s in stance.mirror])
+        blocks.append(
+            said("The nominal gait ought to turn the error round, from this step to the next, of ", *turned, ".")
+        )
     if claim.horizon > 1:
         blocks.append(said(f"{claim.horizon} steps are taken together as one map."))
     return blocks
@@ -191,9 +196,8 @@ def required(claim: Claim) -> list[Block]:
         where: list[Formula | str] = []
         for n, given in r.over.items():
             where += ["; " if where else "", symbol(n), " in ", interval(written(given.lower), written(given.upper))]
-        rows.append(
-            ((str(number_),), (Code(r.text),), (MEANINGS[r.kind],), (*where,) or ("as declared",), (r.stance or "all",))
-        )
+        meaning = MEANINGS[r.kind] + (", at any instant of the stance" if r.during else "")
+        rows.append(((str(number_),), (Code(r.text),), (meaning,), (*where,) or ("as declared",), (r.stance or "all",)))
     head: tuple[Text, ...] = (("no.",), ("requirement",), ("in words",), ("over",), ("stance",))
     if not claim.stances[0].name:
         head, rows = head[:-1], [r[:-1] for r in rows]
@@ -230,14 +234,15 @@ def obligations(claim: Claim) -> list[Block]:
     for stance in claim.stances:
         alone = of_stance(claim, stance.name) if stance.name else claim
         caption: Text = (f"Ranges to be enclosed{', stance ' + stance.name if stance.name else ''}",)
-        rows = [_owed(o, name, meaning) for o, name, meaning in _listed(alone)]
+        rows = [_owed(o, name, meaning) for o, name, meaning in _listed(alone, not stance.name)]
         head: tuple[Text, ...] = (("obligation",), ("range of",), ("over",), ("boxes to begin with",))
         blocks.append(Table(caption, head, tuple(rows), "lllr"))
     blocks.append(Items(tuple(_ends(claim))))
     return blocks
 
 
-def _listed(claim: Claim) -> list[tuple[Obligation, str, Formula]]:
+def _listed(claim: Claim, plain: bool) -> list[tuple[Obligation, str, Formula]]:
+    """`plain`: of a claim whose stances have no names, where more routes are known."""
     o = Obligations(claim)
     nothing = Fraction(0)
     region = Domain("region", nothing, (nothing, nothing))
@@ -259,15 +264,15 @@ def _listed(claim: Claim) -> list[tuple[Obligation, str, Formula]]:
         add(functools.partial(o.miss, s), row(minus(after, aim), words(" on the target")))
         for h in o.moving(s):
             add(functools.partial(o.target_slope, h, s), partial(aim, symbol(h)))
-    if claim.correction and len(o.states) == 1:
-        s = o.state
-        nominal = call("N", symbol(s))
-        add(
-            functools.partial(o.split_slope, region),
-            partial(plus(symbol(s), minus(symbol(s, "+"), nominal)), symbol(s)),
-        )
-        add(functools.partial(o.split_residual, region), words("nominal step less the state, correction on the target"))
-    if len(claim.correction) == 1 and len(o.states) == 1 and claim.horizon == 1:
+    for s in o.states if claim.correction else ():
+        corrected = minus(symbol(s, "+"), call("N", symbol(s)))
+        turned = s in o.stance.mirror
+        for x in o.states:
+            told_apart = corrected if x != s else minus(corrected, symbol(s)) if turned else plus(symbol(s), corrected)
+            add(functools.partial(o.split_slope, region, s, x), partial(told_apart, symbol(x)))
+        kept = "nominal step less where it ought to lead" if turned else "nominal step less the state"
+        add(functools.partial(o.split_residual, region, s), words(f"{kept}, correction on the target"))
+    if plain and len(claim.correction) == 1 and len(o.states) == 1 and claim.horizon == 1:
         s, by = o.state, symbol(claim.correction[0])
         aimed = row(by, words(" on the target"))
         meanings = (partial(symbol(s, "+"), by), partial(by, symbol(s)), aimed, words("nominal step less the state"))
@@ -276,6 +281,9 @@ def _listed(claim: Claim) -> list[tuple[Obligation, str, Formula]]:
     for k in range(1, len(o.motion.positive) + 1 if o.motion is not None else 1):
         what = "the duration" if k == 1 else "what the leg's push and the signals' one-sided effect rest on"
         add(functools.partial(o.support, k, region), words(f"{what}, above 0 throughout"))
+    pushed = dict.fromkeys(r.state or "" for r in claim.requirements if r.during and r.stance is None)
+    for s, x in ((s, x) for x in pushed for s in o.states):
+        add(functools.partial(o.growth, region, s, x), words(f"what a push of {x} within the stance grows to in {s}"))
     for n, r in enumerate(claim.requirements, 1):
         if r.kind in ("value", "sensitivity", "always", "throughout") and r.stance is None:
             add(functools.partial(o.requirement, n, region), _asked(r))
