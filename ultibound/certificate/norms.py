@@ -200,7 +200,7 @@ class NormWriter(Writer):
             raise ValueError("no set")
         table = Table(self.derivation, "slopes", domain, bits, self.flows())
         at = [{v.name: spelled(v, p[v.name]) for v in table.variables} for p in points]
-        lower = root_of(traced(table, at, power) / len(self.derivation.states), power * len(at))
+        lower = root_of(traced([table.at(x) for x in at], power) / len(self.derivation.states), power * len(at))
         if not lower >= wanted:
             return
         uses = [on, *([self.flow] if self.flow is not None and self._moves("slopes", on) else [])]

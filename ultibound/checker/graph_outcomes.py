@@ -6,12 +6,27 @@ from fractions import Fraction
 from functools import partial
 from typing import Any
 
+from .cycle_outcomes import at_the_edge, farthest, grown, taken_in_any, taken_in_norm
 from .derive import RANGED, Domain
 from .gains import intervals
 from .grammar import constant
 from .graph import Graph
 from .outcomes import SeveralResults
-from .results import GRAIN, LONG, MOST_STEPS, NOTHING, Outcome, Results, Route, Span, compared, less, opposed, verdict
+from .results import (
+    GRAIN,
+    LONG,
+    MOST_STEPS,
+    NOTHING,
+    Outcome,
+    Results,
+    Route,
+    Span,
+    compared,
+    greater,
+    less,
+    opposed,
+    verdict,
+)
 from .rules import Line, Proof, Rejected
 from .theorems import OWN
 
@@ -71,6 +86,8 @@ class StanceResults(SeveralResults):
 
     def bounded(self, bound: Span | None, by_state: dict[str, Fraction]) -> None:
         """What is proved of the long run in this stance."""
+        if bound is not None:
+            bound = Span(greater(bound.lower, taken_in_norm(self)), bound.upper)
         self.bound, self.bounds = bound, dict(by_state)
         for i, s in enumerate(self.states):
             if bound is not None and bound.upper is not None:
@@ -122,6 +139,7 @@ class GraphResults(Results):
         bounds = self.bounds()
         compared_by_state = self.comparisons()
         for name, x in self.each.items():
+            x.orbits = farthest(self, name)
             x.bounded(bounds.get(name), compared_by_state.get(name, {}))
         self.radius = least([x.radius for x in self.each.values()])
         route = self.largest(list(self.each))
@@ -133,6 +151,9 @@ class GraphResults(Results):
 
     def stances(self) -> dict[str, Results]:
         return dict(self.each)
+
+    def sets(self) -> dict[str, Domain]:
+        return {name: x.domain for name, x in self.each.items() if x.domain is not None}
 
     def leaves_out(self, r: Any) -> bool:
         return any(x.derivation.leaves_out(r) for x in self.asked(r))
@@ -181,7 +202,7 @@ class GraphResults(Results):
                 found.setdefault(name, {})[s] = least
                 self.needed.add(n)
         for _, line in lines:
-            if line.domains != {name: x.domain for name, x in self.each.items()}:
+            if line.domains != self.sets():
                 raise Rejected("the comparison refers to other sets")
         return found
 
@@ -190,6 +211,8 @@ class GraphResults(Results):
         steps = [x for (s, _), x in self.onward.items() if s in names]
         bounds = [self.each[s].bound for s in names]
         gain, residual = most([x.gain for x in steps]), most([x.residual for x in steps])
+        if steps:
+            gain = Span(greater(gain.lower, grown(self, names)[0]), gain.upper)
         known = [x for x in bounds if x is not None]
         return Route(gain, residual, most(known) if len(known) == len(bounds) else None)
 
@@ -216,11 +239,10 @@ class GraphResults(Results):
         if r.kind == "steps":
             return self.counted(several, r, c)
         if r.state is not None:  # by the best argument, for either name
-            spans = [x.long_run(r.state) for x in several]
-            span = most([x for x in spans if x is not None]) if None not in spans else None
-            return verdict(
-                self.whole and span is not None and compared(r.relation, Span(None, span.upper), c), False, span
-            )
+            span = self.long_run(several, r.state)
+            proved = self.whole and span is not None and compared(r.relation, Span(None, span.upper), c)
+            taken = Span(None, None if span is None else span.lower)
+            return verdict(proved, not self.any and opposed(r.relation, taken, c), span)
         return self.in_norms(several, r, c)
 
     def in_norms(self, several: list[StanceResults], r: Any, c: tuple[Fraction, Fraction]) -> Outcome:
@@ -230,10 +252,29 @@ class GraphResults(Results):
         upper = Span(None, None if found is None else found.upper)
         means = r.kind == "gain" or all(x.meant() for x in self.each.values())
         proved = self.whole and compared(r.relation, upper, c) and means
+        taken, final = self.surely_in_norms(several, r, found)
+        return verdict(proved, final and not self.any and opposed(r.relation, Span(None, taken), c), found)
+
+    def surely_in_norms(self, several: list[StanceResults], r: Any, found: Span | None) -> tuple[Fraction | None, bool]:
+        """What is taken in whatever norms a proof may choose, and whether that settles what is asked."""
+        if r.kind == "bound":
+            least = taken_in_norm if self.fixed() else taken_in_any  # proofs/graph.md (8)
+            return max((y for x in several if (y := least(x)) is not None), default=None), True
         # in a metric the claim fixes, what is surely taken settles it; in another norm it might be less
-        final = self.fixed() and not self.any and not self.partial and r.kind != "bound" and found is not None
-        final &= r.kind != "gain" or self.statement.route == "slope" or not self.statement.correction
-        return verdict(proved, final and opposed(r.relation, Span(None, found.lower if found else None), c), found)
+        taken = found.lower if found is not None and self.fixed() and not self.partial else None
+        if r.kind != "gain":
+            return taken, True
+        growth, everywhere = grown(self, [x.part for x in several])
+        # nor is another route's gain, told apart from a correction, known from here
+        final = self.statement.route == "slope" or not self.statement.correction
+        return greater(taken, growth if everywhere else None), final
+
+    def long_run(self, several: list[StanceResults], state: str) -> Span | None:
+        """How far a state can be in these stances in the long run: taken by orbits, and proved."""
+        spans = [x.long_run(state) for x in several]
+        known = [x for x in spans if x is not None]
+        span = most(known)
+        return None if span == NOTHING else span if None not in spans else Span(span.lower, None)
 
     def fixed(self) -> bool:
         """Whether the claim itself fixes the norms."""
@@ -249,7 +290,8 @@ class GraphResults(Results):
             else:
                 ok &= less(near, x.radius.lower)
             bounds += [near] if near is not None else []
-        return verdict(ok, False, Span(None, max(bounds)) if len(bounds) == len(several) else None)
+        beyond = not self.any and any(at_the_edge(self, x) for x in several)
+        return verdict(ok, beyond, Span(None, max(bounds)) if len(bounds) == len(several) else None)
 
     def wide(self, several: list[StanceResults], state: str | None) -> Span | None:
         """How far a start may be from the target, of a state or in the norm."""

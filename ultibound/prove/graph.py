@@ -11,8 +11,9 @@ import numpy as np
 
 from ..bounding.evaluate import to_float
 from ..certificate.certificate import sealed
+from ..certificate.cycles import CycleWriter
 from ..certificate.enclosing import Encloser, Watch
-from ..certificate.graph import Basis, GraphWriter, Step
+from ..certificate.graph import Basis, Step
 from ..certificate.results import assembled
 from ..certificate.stances import StanceRemarks
 from ..checker.derive import Derivation
@@ -23,8 +24,9 @@ from ..claim import Claim
 from ..claim.obligations import RANGED, Domain
 from ..contraction.graph import Family, Samples, bounds, families, radii
 from ..contraction.norms import floats
+from .cycles import going_round, growing_round
 from .one import COARSE, DECIDED, Attempt, Known
-from .several import SHARES, SPARE
+from .several import SHARES, SPARE, in_unit
 from .stances import StanceSearch, StepSearch
 
 TRIED = 6  # families of norms, the best by samples first
@@ -35,7 +37,7 @@ Pairs = Mapping[Step, tuple[float, float]]
 class GraphAttempt(Attempt):
     """One pass through the proof of a claim of named stances at one gap."""
 
-    writer: GraphWriter
+    writer: CycleWriter
 
     def __init__(
         self, claim: Claim, gap: float, until: float, watch: Watch, sharp: bool, within: Fraction | None = None,
@@ -51,7 +53,7 @@ class GraphAttempt(Attempt):
         )
         self.proof: Proof = proof_of(read_statement(claim.text, claim.settings, claim.data))
         self.raw: list[dict[str, Any]] = []
-        self.writer = GraphWriter(self.proof, self.raw, "")
+        self.writer = CycleWriter(self.proof, self.raw, "")
         self.enclosers: list[Encloser] = []
         self.smaller, self.curve_may_help = None, False
         flows = known if known is not None else {}
@@ -110,6 +112,9 @@ class GraphAttempt(Attempt):
             if invariant is not None:
                 w.bound(invariant, lines)
                 self._compared(invariant, on, moves)
+        growing_round(self, list(dict.fromkeys(on.values())), lines)
+        if invariant is not None and (len(self.claim.stances[0].states) == 1 or len(lines) == len(self.steps)):
+            going_round(self, invariant, lines)
         for k, r in enumerate(self.claim.requirements, 1):
             for s, x in each.items():
                 if r.kind in RANGED and r.stance in (None, s):
@@ -173,8 +178,15 @@ class GraphAttempt(Attempt):
         return Domain("region", Fraction(0), spans[0], targets=spans)
 
     def _take(self, family: Family) -> None:
+        """Takes norms; unless the claim fixes them, in the unit in which each is at least the error of every state."""
         for s, x in self.stances.items():
             x.normed(family[s])
+        each = self.stances.values()
+        if len(next(iter(each)).obligations.states) == 1 or next(iter(each))._weights() is not None:
+            return
+        unit = max(x.norm.support(i) for x in each for i in range(len(x.norm.inverse)))  # proofs/several.md (5e)
+        for s, x in self.stances.items():
+            x.normed(in_unit(family[s], unit))
 
     def _by_samples(self, samples: Mapping[Step, Samples], family: Family, regions: bool) -> tuple[int, float] | None:
         """Whether sets are kept and, then, how small the bounds are, by samples; None where the norm is none."""

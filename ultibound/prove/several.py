@@ -494,7 +494,12 @@ def scaled(p: Proposal) -> Proposal:
     proofs/several.md (5e)
     """
     norm = metric(p.kind, p.rows, p.inverse, len(p.inverse))
-    unit = Fraction(decimal_up(max(norm.support(i) for i in range(len(p.inverse))), DIGITS))
+    return in_unit(p, max(norm.support(i) for i in range(len(p.inverse))))
+
+
+def in_unit(p: Proposal, most: Fraction) -> Proposal:
+    """The same metric, so many times as large, rounded up."""
+    unit = Fraction(decimal_up(most, DIGITS))
     rows = tuple(tuple(x * unit for x in row) for row in p.rows)
     inverse = tuple(tuple(x / unit for x in row) for row in p.inverse)
     size = to_float(unit)
