@@ -593,9 +593,8 @@ def without(entries: Entries, *lines: int) -> Entries:
 STILL = {"cuts": {}, "pieces": ["0", "1"], "degrees": [1, 0], "bits": 24, "cells": [["16777216 0"]]}
 
 
-def of_the_ground() -> None:
-    """The same regions, x standing still for a second on either foot."""
-    plain = regions().found("region", [("settles", "proved")])
+def grounded(plain: Entries) -> Entries:
+    """The same regions, x standing still for a second on either foot: the flows are lines 1 and 2, the sets that are kept line 13."""
     text = plain["claim"]["text"].replace("3*x/2 + p", "3*X/2 + p").replace("x/4 + q", "X/4 + q")
     text = text.replace("[stance.left]", '[dynamics]\nduration = 1\n[dynamics.start]\nX = "x"\n[dynamics.rate]\nX = "0*X"\n[stance.left]')
     proof = [{"rule": "trajectory", "proves": f"{s}:flow", "uses": [], "witness": STILL, "concludes": {"error": "0"}} for s in ("left", "right")]
@@ -607,7 +606,12 @@ def of_the_ground() -> None:
         proof.append({**line, "uses": [n + 2 for n in line["uses"]] + flow, "witness": witness})
     for s in ("left", "right"):
         proof.append({"rule": "range", "proves": f"{s}:support[1]", "uses": [13], "witness": {"bits": 0, "trees": ["d"]}, "concludes": {"lower": "1", "upper": "1"}})
-    good = but(plain, "claim text", text, "proof", proof)
+    return but(plain, "claim text", text, "proof", proof)
+
+
+def of_the_ground() -> None:
+    good = grounded(regions().found("region", [("settles", "proved")]))
+    proof = good["proof"]
     judged("on the ground", good)
     exact("on the ground", good, {"gain": ("3/2", "3/2"), "residual": ("1/8", "1/8"), "stances left states x bound": (None, "3/20")})
     for n, line in enumerate(proof, 1):

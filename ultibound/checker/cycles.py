@@ -101,7 +101,7 @@ class Walk:
 def nearby(walk: Walk, sets: Sets, gains: Gains, states: list[list[Ends]]) -> list[list[Fraction]]:
     """How far the orbit may be from each state that was followed: proofs/graph.md (8b)."""
     k = [gains[step] for step in walk.steps]
-    if not (min(k) >= 0 and prod(k) < 1):
+    if not 0 <= prod(k) < 1:
         raise Rejected("the product of the gains around the walk is not below 1")
     norms = [norm for s in walk.names if (norm := sets[s].metric) is not None]
     ends = [max(y[1] - x[0], x[1] - y[0]) for x, y in zip(states[0], states[-1], strict=True)]
