@@ -45,12 +45,15 @@ class Tally:
     refused: int = 0
     walked: int = 0
     nearest: list[float] = field(default_factory=list)
+    reached: list[float] = field(default_factory=list)
 
     def table(self) -> str:
         near = f"{np.median(self.nearest):.2f}, at most {max(self.nearest):.2f}" if self.nearest else "none"
+        orbits = f"{np.median(self.reached):.2f}, at least {min(self.reached):.2f}" if self.reached else "none"
         return (
             f"claims {self.claims}, bounded {self.bounded}, contracting by simulation {self.contracting}, refused {self.refused}, "
-            f"steps {self.walked}\nlargest error in the long run over its proved bound: median {near}"
+            f"steps {self.walked}\nlargest error in the long run over its proved bound: median {near}\n"
+            f"what proved orbits reach over the proved bound: median {orbits}"
         )
 
 
@@ -163,9 +166,13 @@ def run(seed: int, tally: Tally) -> None:
     if r["set"] is None:
         return
     bounds = {s: [x["bound"] for x in one["states"].values()] for s, one in r["stances"].items()}
-    if any(b is None for several in bounds.values() for b in several):
+    if any(b is None or b["upper"] is None for several in bounds.values() for b in several):
         return
     tally.bounded += 1
+    for b in (b for several in bounds.values() for b in several if float(Fraction(b["upper"])) > 0):
+        low = Fraction(b["lower"] or 0)
+        assert low <= Fraction(b["upper"]), (seed, b)
+        tally.reached.append(float(low / Fraction(b["upper"])))
     for s, errors in far.items():
         for e, b in zip(errors, bounds[s], strict=True):
             assert e <= float(Fraction(b["upper"])) * (1 + ROUND) + 1e-6, (seed, s, e, b)

@@ -615,7 +615,7 @@ def of_the_ground() -> None:
     judged("on the ground", good)
     exact("on the ground", good, {"gain": ("3/2", "3/2"), "residual": ("1/8", "1/8"), "stances left states x bound": (None, "3/20")})
     for n, line in enumerate(proof, 1):
-        part, _, name = line["proves"].rpartition(":")
+        _, _, name = line["proves"].rpartition(":")
         if name.startswith(("image", "slopes", "misses")):
             other = 2 if line["uses"][-1] == 1 else 1
             reject(f"the flow of another stance, {n}", but(good, f"proof {n - 1} uses", [*line["uses"][:-1], other]), f"proof line {n}", "lines about" if "image" in name else "uses: the set of the stance")

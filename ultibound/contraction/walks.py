@@ -10,6 +10,7 @@ from __future__ import annotations
 import time
 from collections import deque
 from collections.abc import Mapping, Sequence
+from contextlib import suppress
 from dataclasses import dataclass, replace
 from math import inf
 
@@ -20,7 +21,8 @@ from ..claim.obligations import Variable
 from .rounds import MOST_HELD, ROUNDS, STEP, Map, Values
 from .samples import combinations
 
-LONGEST, FADED, KEPT, FOLLOWED = 48, 1e-4, 4, 2
+LONGEST, FADED, KEPT, FOLLOWED, NEWTON = 48, 1e-4, 4, 2, 6
+STILL = 1e-15  # relative change a round at which an orbit is found
 Step = tuple[str, str]
 
 
@@ -121,11 +123,11 @@ def _walk(
     stance, i = at
     row = np.zeros(len(maps[stance].states))
     row[i] = sign
-    tails, first = [Tail(row, 0.0, stance, ())], 1.0
+    tails, within = [Tail(row, 0.0, stance, ())], [s for s in maps if _way(then, stance, s) is not None]
     for _ in range(LONGEST):
         longer = []
         for tail in tails:
-            for s in (s for s in maps if tail.stance in then[s]):
+            for s in (s for s in within if tail.stance in then[s]):
                 each = about.miss[s, tail.stance] @ tail.row
                 k = int(np.argmax(each))
                 before = tail.row @ about.jacobian[s]
@@ -133,19 +135,16 @@ def _walk(
         tails = sorted(longer, key=lambda x: -x.total)[:KEPT]
         if not tails or time.monotonic() > until:
             return None
-        if not max(float(np.abs(x.row).max()) for x in tails) >= FADED * first:
+        if not max(float(np.abs(x.row).max()) for x in tails) >= FADED:
             break
-    for tail in tails:
-        p = _period(tail, stance)
-        if p:
-            tail = replace(tail, stance=stance, steps=tail.steps[:p])
-        back = _way(then, stance, tail.stance)
-        if back is None:
-            continue
-        steps = [(s, len(maps[s].fresh) // 2) for s in back] + list(reversed(tail.steps))
-        values = tuple(maps[s].fresh[k] for s, k in steps)
-        return Trial(at, held, tuple(s for s, _ in steps), values, tail.total)
-    return None
+    tail = tails[0]
+    p = _period(tail, stance)
+    if p:
+        tail = replace(tail, stance=stance, steps=tail.steps[:p])
+    back = _way(then, stance, tail.stance) or []
+    steps = [(s, len(maps[s].fresh) // 2) for s in back] + list(reversed(tail.steps))
+    values = tuple(maps[s].fresh[k] for s, k in steps)
+    return Trial(at, held, tuple(s for s, _ in steps), values, tail.total)
 
 
 def _period(tail: Tail, stance: str) -> int:
@@ -178,19 +177,35 @@ def _way(then: Mapping[str, Sequence[str]], start: str, end: str) -> list[str] |
 
 
 def _followed(maps: Mapping[str, Map], trial: Trial, until: float) -> Around | None:
-    """The orbit that rounds of the walk lead to, from the target; None where they lead to no value."""
+    """The orbit that rounds of the walk lead to, from the target; None where they lead to no value.
+
+    Where rounds are slow to settle, Newton's method goes on from where they are.
+    """
+    stance, i = trial.at
     centres = {s: np.array(maps[s].target(trial.held)) for s in dict.fromkeys(trial.stances)}
     values = [maps[s].numbers(trial.held, [w]) for s, w in zip(trial.stances, trial.steps, strict=True)]
-    start = centres[trial.stances[0]]
-    x, far = start[None], 0.0
-    for _ in range(ROUNDS):
-        before, far = x, 0.0
+
+    def after(x: Floats) -> tuple[Floats, float]:
+        """States a round later, a row each, and how far the first row was from its target on the way."""
+        far = 0.0
         for s, w in zip(trial.stances, values, strict=True):
-            if s == trial.at[0]:
-                far = max(far, abs(float(x[0, trial.at[1]] - centres[s][trial.at[1]])))
-            x = maps[s].after(x, w)
+            if s == stance:
+                far = max(far, abs(float(x[0, i] - centres[s][i])))
+            x = maps[s].after(x, np.repeat(w, len(x), axis=0))
+        return x, far
+
+    start = centres[trial.stances[0]]
+    x, n = start[None], len(start)
+    for k in range(ROUNDS + NEWTON):
+        before = x
+        x, far = after(x)
         if not np.isfinite(x).all() or time.monotonic() > until:
             return None
-        if np.abs(x - before).max() <= 1e-15 * max(1e-300, float(np.abs(x - start).max())):
+        if np.abs(x - before).max() <= STILL * max(1e-300, float(np.abs(x - start).max())):
             break
+        if k >= ROUNDS:
+            moved, _ = after(before + np.vstack([np.zeros(n), STEP * np.eye(n)]))
+            slope = (moved[1:] - moved[0]).T / STEP
+            with suppress(np.linalg.LinAlgError):
+                x = before + np.linalg.solve(np.eye(n) - slope, (x - before)[0])
     return Around(trial.stances, tuple(float(y) for y in x[0] - start), trial.held, trial.steps, far)
