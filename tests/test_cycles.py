@@ -10,7 +10,7 @@ import numpy as np
 import pytest
 
 from tests.conftest import proved
-from tests.test_graph import DYNAMIC, TWO, graph, matrices, verdicts
+from tests.test_graph import TWO, graph, verdicts
 from ultibound.contraction.words import fastest_round
 
 
@@ -30,7 +30,11 @@ def test_two_stances_reach_their_bounds(a: str, b: str) -> None:
     """x⁺ = a x + w/10 and b x + w/20: (1/20 + |b|/10)/(1 − |ab|) on the left, taken by an orbit, and so refuted if less."""
     p, q = abs(Q(a)), abs(Q(b))
     left, right = ((Q(1, 20) + q / 10) / (1 - p * q), (Q(1, 10) + p / 20) / (1 - p * q))
-    stances = {"left": ("right", "[-8, 8]", "0", f"{a}*x + w/10"), "right": ("left", "[-8, 8]", "0", f"{b}*x + w/20")}
+    wide = 8 * p + 1
+    stances = {
+        "left": ("right", "[-8, 8]", "0", f"{a}*x + w/10"),
+        "right": ("left", f'["-{wide}", "{wide}"]', "0", f"{b}*x + w/20"),
+    }
     asked = [
         f"bound(x) <= {max(left, right)}", f"bound(x) < {max(left, right)}", f'"bound(x) < {left}"\nin = "left"',
         f'"bound(x) <= {right}"\nin = "right"', f'"bound < {right}"\nin = "right"', "settles",
@@ -55,18 +59,19 @@ def test_one_side_is_refuted_and_the_other_proved() -> None:
 
 
 def test_the_worst_order_is_found_among_all() -> None:
-    """b_t = max over s of k_s b_s + ε_st: the orbit goes round the steps that attain it."""
+    """All gains above 0: the highest and lowest errors in t are those that some s leads to from its own."""
     targets = {"a": Q(0), "b": Q(1, 10), "c": Q(-1, 5)}
     gains = {"a": Q(1, 2), "b": Q(1, 3), "c": Q(1, 4)}
     stances = {s: ("a b c", "[-3, 3]", str(t), f"{gains[s]}*x + w/50") for s, t in targets.items()}
-    b = dict.fromkeys(targets, Q(0))
+    high, low = dict.fromkeys(targets, Q(0)), dict.fromkeys(targets, Q(0))
     for _ in range(80):
-        b = {t: max(gains[s] * b[s] + abs(gains[s] * targets[s] - targets[t]) + Q(1, 50) for s in targets) for t in targets}
+        high = {t: max(gains[s] * (high[s] + targets[s]) for s in targets) + Q(1, 50) - targets[t] for t in targets}
+        low = {t: min(gains[s] * (low[s] + targets[s]) for s in targets) - Q(1, 50) - targets[t] for t in targets}
     r = proved(graph(stances, "settles")).results
     for s in targets:
-        low, high = span(r, s)
-        # errors of one sign may not meet misses of the other on the way round
-        assert Q(9, 10) * b[s] <= low <= high <= b[s] * (1 + Q(1, 10**9))
+        found, upper = span(r, s)
+        exact = max(high[s], -low[s])
+        assert exact * Q(9999, 10000) <= found <= exact * (1 + Q(1, 10**9)) <= upper * (1 + Q(1, 10**9)), s
 
 
 def test_a_stance_that_never_comes_again_has_no_orbit() -> None:
@@ -99,24 +104,6 @@ def test_held_quantities_stay_along_an_orbit() -> None:
     assert abs(low - left) <= Q(1, 10**9) and high > low
 
 
-@pytest.mark.parametrize("seed", range(3))
-def test_two_states_come_near_the_exact_sums(seed: int) -> None:
-    """Σ |(A B)ⁿ| (d, e)ᵀ + |(A B)ⁿ A| …: an orbit whose round is as long as the sum takes to fade reaches nearly all."""
-    maps, size, more = matrices(seed), np.array([0.02, 0.01]), ""
-    for name, other in (("left", "right"), ("right", "left")):
-        (a, b), (c, d) = maps[name]
-        more += f'[stance.{name}]\nthen = "{other}"\nstate = {{ x = [-3, 3], v = [-3, 3] }}\ntarget = {{ x = 0, v = 0 }}\n'
-        more += f'next = {{ x = "{a}*x + {b}*v + d", v = "{c}*x + {d}*v + e" }}\n'
-    r = proved(TWO.format(top="", more=more, x=9, v=9)).results
-    for name in maps:
-        order = [maps["left"], maps["right"]] if name == "right" else [maps["right"], maps["left"]]
-        total, power = np.zeros(2), np.eye(2)
-        for n in range(400):
-            total, power = total + np.abs(power) @ size, power @ order[n % 2]
-        low = np.array([float(span(r, name, s)[0]) for s in ("x", "v")])
-        assert np.all(low <= total * (1 + 1e-12)) and np.all(low >= 0.999 * total), (low, total)
-
-
 def test_what_grows_around_a_walk_grows_in_any_norms() -> None:
     """A = [[0, 2], [0, 0]] on the left and Aᵀ on the right: spectral radii 0, a product of 4, and so a gain of 2 at least."""
     more = (
@@ -127,14 +114,14 @@ def test_what_grows_around_a_walk_grows_in_any_norms() -> None:
     )
     exact = sqrt(1.9 / 2)
     r = proved(TWO.format(top="", more=more, x=9, v=9)).results
-    assert verdicts(r)[3] == "refuted" and verdicts(r)[5] != "refuted"
+    assert verdicts(r)[0] == "refuted" and verdicts(r)[2] != "refuted"
     assert 0.97 < exact < float(r["gain"]["upper"]) and float(r["gain"]["lower"]) >= exact * (1 - 1e-9)
-    said = r["requirements"][3]["limited_by"]
-    assert said.startswith("whatever the norms: Jacobians") and "around" in said and f"{exact:.5g}" in said
+    said = r["requirements"][0]["limited_by"]
+    assert said.startswith("whatever the norms: Jacobians") and "around" in said and f"by {exact:.3g}" in said
 
 
 def test_a_walk_of_one_stance_speaks_of_it() -> None:
-    maps = "x = \"0.8*x + 0.3*v + d\", v = \"0.1*v - 0.3*x + e\""
+    maps = 'x = "0.8*x + 0.3*v + d", v = "0.1*v - 0.3*x + e"'
     more = "".join(
         f'[stance.{s}]\nthen = {then}\nstate = {{ x = [-3, 3], v = [-3, 3] }}\ntarget = {{ x = 0, v = 0 }}\nnext = {{ {step} }}\n'
         for s, then, step in (("left", '["left", "right"]', maps), ("right", '"left"', 'x = "x/10 + d", v = "v/10 + e"'))
@@ -142,7 +129,7 @@ def test_a_walk_of_one_stance_speaks_of_it() -> None:
     more += '[[require]]\nthat = "gain < 0.5"\nin = "left"\n[[require]]\nthat = "gain < 0.5"\nin = "right"\n'
     r = proved(TWO.format(top="", more=more, x=9, v=9)).results
     rate = np.abs(np.linalg.eigvals([[0.8, 0.3], [-0.3, 0.1]])).max()
-    assert rate > 0.5 and verdicts(r)[3] == "refuted" and verdicts(r)[4] != "refuted"
+    assert rate > 0.5 and verdicts(r)[0] == "refuted" and verdicts(r)[1] != "refuted"
 
 
 def test_words_go_round_allowed_steps_only() -> None:
@@ -154,11 +141,3 @@ def test_words_go_round_allowed_steps_only() -> None:
     assert turn is not None and set(turn.stances) == {"a", "b"} and abs(turn.rate - sqrt(0.2)) <= 1e-2
     assert fastest_round(jacobians, {"a": ["b"], "b": ["b"]}).stances == ("b",)  # type: ignore[union-attr]
     assert fastest_round({"a": grow * 0}, {"a": ["a"]}) is None
-
-
-def test_a_continuous_stance_goes_round_too() -> None:
-    r = proved(DYNAMIC).results
-    for stance in ("left", "right"):
-        low, high = span(r, stance, "vy")
-        assert Q(9, 10) * high <= low <= high
-    assert verdicts(proved(DYNAMIC.replace("bound(vy) <= 0.0793", "bound(vy) <= 0.07")).results)[3] == "refuted"

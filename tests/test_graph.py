@@ -208,7 +208,10 @@ def matrices(seed: int) -> dict[str, np.ndarray]:
 
 @pytest.mark.parametrize("seed", range(6))
 def test_two_states_hold_the_exact_sums(seed: int) -> None:
-    """In the long run on the right sup |e| = Σ_n |(A B)ⁿ| (|d|, |e|)ᵀ + |(A B)ⁿ A| …: below every bound, and not far."""
+    """In the long run on the right sup |e| = Σ_n |(A B)ⁿ| (|d|, |e|)ᵀ + |(A B)ⁿ A| …: below every bound, and not far.
+
+    An orbit whose round is as long as the sum takes to fade reaches nearly all of it.
+    """
     maps, size = matrices(seed), np.array([0.02, 0.01])
     more = ""
     for name, other in (("left", "right"), ("right", "left")):
@@ -228,6 +231,8 @@ def test_two_states_hold_the_exact_sums(seed: int) -> None:
     for name, total in exact.items():
         found = np.array([float(r["stances"][name]["states"][s]["bound"]["upper"]) for s in ("x", "v")])
         assert np.all(found >= total * (1 - 1e-9)) and np.all(found <= 3 * total), (name, found, total)
+        taken = np.array([float(r["stances"][name]["states"][s]["bound"]["lower"]) for s in ("x", "v")])
+        assert np.all(taken <= total * (1 + 1e-12)) and np.all(taken >= 0.999 * total), (name, taken, total)
 
 
 @pytest.mark.parametrize("kind", ["box", "polytope", "ellipsoid"])
@@ -339,6 +344,8 @@ def test_a_continuous_stance_over_each_foot() -> None:
     bound = missed.max() / (1 - k)
     upper = float(r["bound"]["upper"])
     assert bound <= upper <= bound * 1.002
+    assert 0.9 * bound <= float(r["bound"]["lower"]) <= upper
+    assert all(float(r["stances"][s]["states"]["vy"]["bound"]["lower"]) >= 0.9 * bound for s in ("left", "right"))
     assert abs(float(r["gain"]["upper"]) - k) <= 1e-4
 
 

@@ -21,7 +21,14 @@ from .lines import DIGITS, IRRATIONAL, downward, growing
 from .norms import root_of, spelled
 
 ORBIT_BITS = 128
-WIDER = (10**13, 10**11, 10**9)  # shares of a state by which an interval reaches to either side of it
+WIDER = (
+    10**13,
+    10**11,
+    10**9,
+    10**8,
+    10**7,
+    10**5,
+)  # shares of a state by which an interval reaches to either side of it
 Values = Mapping[str, Fraction]
 
 

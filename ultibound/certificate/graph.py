@@ -75,7 +75,7 @@ class GraphWriter(StanceWriter):
         """The bound in the norm of each stance; None where the steps do not contract together."""
         pairs = {e: self.proof.lines[n].concludes for e, n in steps.items()}
         k = {e: ((x["gain"],),) for e, x in pairs.items()}
-        p = least_above(k, {e: [Fraction(1)] for e in k})
+        p = least_above(k, {e: [Fraction(1)] for e in k}, 1)
         b = least_above(k, {e: [x["residual"]] for e, x in pairs.items()})
         if p is None or b is None:
             return None
@@ -104,7 +104,7 @@ class GraphWriter(StanceWriter):
             ]
         if sum(len(rows) for rows, _ in bases.values()) > LARGEST:
             return None
-        p = least_above(k, {e: [Fraction(1)] * len(x) for e, x in residual.items()})
+        p = least_above(k, {e: [Fraction(1)] * len(x) for e, x in residual.items()}, 1)
         b = least_above(k, residual)
         if p is None or b is None:
             return None
@@ -128,11 +128,12 @@ class GraphWriter(StanceWriter):
 
 
 def least_above(
-    k: Mapping[Step, Matrix], residual: Mapping[Step, Sequence[Fraction]]
+    k: Mapping[Step, Matrix], residual: Mapping[Step, Sequence[Fraction]], least: int = 0
 ) -> dict[str, list[Fraction]] | None:
     """The least b >= 0 with K b + residual <= b of the next on every step, exactly; None where there is none.
 
-    Policies: each row of b is met with equality by one step, the one that asked for most so far (Howard 1960).
+    `least`: b of stances that no step leads to. Policies: each row of b is met with equality by one step, the one that
+    asked for most so far (Howard 1960).
     """
     size = {s: len(x[0]) for (s, _), x in k.items()}
     rank = {(s, i): n for n, (s, i) in enumerate((s, i) for s, m in size.items() for i in range(m))}
@@ -143,7 +144,7 @@ def least_above(
     b = [Fraction(0)] * len(rank)
     for _ in range(ROUNDS):
         table = [[Fraction(0)] * len(rank) for _ in rank]
-        right = [Fraction(0)] * len(rank)
+        right = [Fraction(least)] * len(rank)
         for (t, i), (s, _) in chosen.items():
             for j, x in enumerate(k[s, t][i]):
                 table[rank[t, i]][rank[s, j]] = x

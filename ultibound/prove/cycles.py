@@ -94,6 +94,8 @@ def _fastest(a: GraphAttempt, within: Sequence[str]) -> tuple[RoundWord, list[Po
     then = {s.name: s.then for s in a.claim.stances}
     best: tuple[RoundWord, list[Point]] | None = None
     tables = {s: (x := a.stances[s]).matrices("slopes", x.domain, x.norm) for s in within}
+    norm = a.stances[within[0]].norm  # the same coordinates for all, in which errors are of like size
+    rows, inverse = floats(norm.rows), floats(norm.inverse)
     for same in _same(a, tables):
         points, jacobians = dict[str, list[Point]](), dict[str, Floats]()
         for s, matrices in tables.items():
@@ -103,7 +105,7 @@ def _fastest(a: GraphAttempt, within: Sequence[str]) -> tuple[RoundWord, list[Po
             found = matrices.at(at.reshape(len(points[s]), -1))
             good = np.flatnonzero(np.isfinite(found).all(axis=(1, 2)))
             points[s] = [points[s][int(k)] for k in good]
-            jacobians[s] = floats(x.norm.rows) @ found[good] @ floats(x.norm.inverse)
+            jacobians[s] = rows @ found[good] @ inverse
         word = fastest_round(jacobians, then)
         if word is not None and (best is None or word.rate > best[0].rate):
             best = word, [points[s][k] for s, k in zip(word.stances, word.letters, strict=True)]
