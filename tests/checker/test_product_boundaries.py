@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import random
+from bisect import bisect_right
 from collections.abc import Sequence
 from fractions import Fraction as Q
 from itertools import product
@@ -95,7 +96,7 @@ def exactly() -> None:
     forward, backward = of(words, 1), of(words[::-1], 1)
     assert forward != backward
     for name, points, trace in (("in order", words, forward), ("backwards", words[::-1], backward)):
-        c = next(Q(n, 10**6) for n in range(10**6, -1, -1) if 2 * Q(n, 10**6) ** 3 <= trace)
+        c = Q(bisect_right(range(10**6 + 1), int(trace * 10**18), key=lambda n: 2 * n**3) - 1, 10**6)
         good = one(points, 1, str(c))
         accept(f"product {name}", good)
         reject(f"product {name}, more", but(good, "proof 10 concludes lower", str(c + Q(1, 10**6))), "proof line 11", SMALL)
