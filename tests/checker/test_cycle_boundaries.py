@@ -5,6 +5,7 @@ The certificates are those of `test_graph_boundaries.py`, with a line more.
 
 from __future__ import annotations
 
+from bisect import bisect_right
 from collections.abc import Sequence
 from fractions import Fraction as Q
 from typing import Any
@@ -417,7 +418,8 @@ def products() -> None:
     words = [(left("1/2", "1/4"), right()), (left("1/4", "0"), right("1/4")), (left("-1/2", "1/8"), right("3/8"))]
     assert traced(words) != traced(words[::-1])
     for name, several in (("in order", words), ("backwards", words[::-1])):
-        c = next(Q(n, 10**5) for n in range(10**5, -1, -1) if 2 * Q(n, 10**5) ** 6 <= traced(several))
+        trace = traced(several)
+        c = Q(bisect_right(range(10**5), trace, key=lambda n: 2 * Q(n, 10**5) ** 6) - 1, 10**5)
         good = one([x for pair in several for x in pair], 1, str(c), stances=LR * 3)
         accept(f"product {name}", good)
         reject(f"product {name}, more", but(good, "proof 19 concludes lower", str(c + Q(1, 10**5))), "proof line 20", SMALL)
