@@ -117,7 +117,9 @@ def test_what_grows_around_a_walk_grows_in_any_norms() -> None:
     assert verdicts(r)[0] == "refuted" and verdicts(r)[2] != "refuted"
     assert 0.97 < exact < float(r["gain"]["upper"]) and float(r["gain"]["lower"]) >= exact * (1 - 1e-9)
     said = r["requirements"][0]["limited_by"]
-    assert said.startswith("whatever the norms: Jacobians at the targets, around left, right, grow on average by 0.9745")
+    assert said.startswith(
+        "whatever the norms: Jacobians at the targets, around left, right, grow on average by 0.9745"
+    )
 
 
 def test_a_walk_of_one_stance_speaks_of_it() -> None:

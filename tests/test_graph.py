@@ -247,7 +247,7 @@ def test_a_norm_of_the_kind_that_is_asked_for(kind: str) -> None:
 
 
 @pytest.mark.parametrize("change, place", [
-    ('route = "split"\ncorrection = ["f"]', "route"), ("horizon = 2", "horizon"),
+    ('route = "split"\ncorrection = ["f"]', "route"),
     ('[[require]]\nthat = "bound(x) <= 1"\nover = { x = [-1, 1] }', "require[1].over"),
 ])  # fmt: skip
 def test_what_cannot_be_proved_yet_is_said_in_one_line(change: str, place: str) -> None:

@@ -238,7 +238,7 @@ def what_is_kept() -> None:
         reject(f"entries in another basis {end}", but(good, f"proof 18 witness {end}", {"rows": [["2"]], "inverse": [["1/2"]]}, "proof 18 concludes 1,1", "3"), "proof line 23", "different bases")
     wrong = regions(top='route = "split"\ncorrection = ["f"]\n[define]\nf = "x"').found("region", [("settles", "proved")])
     reject("another route", wrong, "claim", "only the route slope")
-    reject("a horizon", regions(top="horizon = 2").found("region", [("settles", "proved")]), "claim", "only the route slope over one step")
+    reject("a horizon", regions(top="horizon = 2").found("region", [("settles", "proved")]), "proof line 18", "lines about left>right>left, right>left>right")
 
 
 # balls: R = 1 and 3/4; 3/8 x + p leads from 1 to 3/8 + 3/8 about 1/4, x/2 + q from 3/4 to 9/16 about 0

@@ -5,6 +5,7 @@ from __future__ import annotations
 from collections.abc import Iterable, Mapping, Sequence
 from contextlib import suppress
 from fractions import Fraction
+from math import gcd
 from typing import Any
 
 from ..checker.cycles import Walk, flowing, held_in, nearby
@@ -104,9 +105,9 @@ class CycleWriter(GraphWriter):
 
     def _orbit(self, witness: dict[str, Any], uses: list[int]) -> bool:
         with suppress(Undefined, Rejected):
-            walk, stances = Walk(self.graph, witness, self._flows(uses)), witness["stances"]
+            walk = Walk(self.graph, witness, self._flows(uses))
             a, b = (Fraction(x) for x in witness["start"])
-            far = walk.farthest(walk.follow([(a, b)])[:-1], [[Fraction(0)]] * len(stances))
+            far = walk.farthest(walk.follow([(a, b)]))
             self.append("graph-orbit", "orbit", uses, witness, {k: downward(x) for k, x in far.items()})
             return True
         return False
@@ -115,6 +116,9 @@ class CycleWriter(GraphWriter):
         self, stances: Sequence[str], start: Sequence[float], held: Values, steps: Sequence[Values],
         lines: Sequence[int], bits: int,
     ) -> bool:  # fmt: skip
+        n = self.graph.statement.horizon
+        times = n // gcd(n, len(stances))
+        stances, steps = list(stances) * times, list(steps) * times  # whole horizons
         blank = self._around(stances, held, steps, bits, *lines)
         if blank is None:
             return False
@@ -123,13 +127,14 @@ class CycleWriter(GraphWriter):
         witness["start"] = {s: str(Fraction(e)) for s, e in zip(states, start, strict=True)}
         with suppress(Undefined, Rejected, ZeroDivisionError):
             walk = Walk(self.graph, witness, self._flows(uses))
-            gains = {e: self.proof.lines[n].concludes["gain"] for e, n in zip(self.graph.steps, lines[1:], strict=True)}
+            ways = zip(self.graph.walks, lines[1:], strict=True)
+            gains = {way: self.proof.lines[line].concludes["gain"] for way, line in ways}
             centre = walk.centres[stances[0]]
             followed = walk.follow(
                 [(c[0] + Fraction(e), c[1] + Fraction(e)) for c, e in zip(centre, start, strict=True)]
             )
             sets = self.proof.lines[lines[0]].domains or {}
-            far = walk.farthest(followed[:-1], nearby(walk, sets, gains, followed))
+            far = walk.farthest(followed, nearby(walk, sets, gains, followed, n), n)
             self.append("graph-periodic", "periodic", uses, witness, {x: downward(y) for x, y in far.items()})
             return True
         return False

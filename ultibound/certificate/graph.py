@@ -15,7 +15,7 @@ from ..checker.theorems import OWN
 from .lines import upward
 from .norms import NormWriter, solved, texts
 
-Step = tuple[str, str]
+Step = tuple[str, ...]  # from a stance to the next, or a way of several steps
 Basis = tuple[Matrix, Matrix]
 ROUNDS = 60  # of choosing, for each stance, the step before it that asks for most
 LARGEST = 40  # rows of all bases together, up to which a comparison is solved exactly
@@ -30,11 +30,11 @@ class StanceWriter(NormWriter):
 
 
 class StepWriter(StanceWriter):
-    """Lines about the step from a stance to the one that follows."""
+    """Lines about the step from a stance to the one that follows, or about several."""
 
-    def __init__(self, before: StanceWriter, after: StanceWriter, norm: int) -> None:
-        """`norm`: the line of the metric of the stance that follows."""
-        super().__init__(before.proof, before.raw, f"{before.part}>{after.part}")
+    def __init__(self, before: StanceWriter, part: str, norm: int) -> None:
+        """`norm`: the line of the metric of the stance that follows last."""
+        super().__init__(before.proof, before.raw, part)
         self.flow, self.norm = before.flow, norm
 
     def rests(self, proves: str, on: int) -> list[int]:
@@ -94,11 +94,12 @@ class GraphWriter(StanceWriter):
             far[name] = moved(d, [lines[next(waiting)] for _ in movements(d)])
         k: dict[Step, Matrix] = {}
         residual: dict[Step, list[Fraction]] = {}
-        for (s, t), (slopes, misses) in tables.items():
+        for e, (slopes, misses) in tables.items():
+            s, t = e[0], e[-1]
             rows, m = bases[t][0], range(1, len(bases[s][0]) + 1)
             entries, missed = lines[slopes].concludes, lines[misses].concludes
-            k[s, t] = tuple(tuple(entries[f"{i},{j}"] for j in m) for i in range(1, len(rows) + 1))
-            residual[s, t] = [
+            k[e] = tuple(tuple(entries[f"{i},{j}"] for j in m) for i in range(1, len(rows) + 1))
+            residual[e] = [
                 missed[f"{i},1"] + sum((abs(x) * y for x, y in zip(row, far[t], strict=True)), Fraction(0))
                 for i, row in enumerate(rows, 1)
             ]
@@ -135,32 +136,33 @@ def least_above(
     `least`: b of stances that no step leads to. Policies: each row of b is met with equality by one step, the one that
     asked for most so far (Howard 1960).
     """
-    size = {s: len(x[0]) for (s, _), x in k.items()}
+    size = {s: len(x[0]) for (s, *_), x in k.items()}
     rank = {(s, i): n for n, (s, i) in enumerate((s, i) for s, m in size.items() for i in range(m))}
     chosen: dict[tuple[str, int], Step] = {}
     for step in k:
-        for i in range(size[step[1]]):
-            chosen.setdefault((step[1], i), step)
+        for i in range(size[step[-1]]):
+            chosen.setdefault((step[-1], i), step)
     b = [Fraction(0)] * len(rank)
     for _ in range(ROUNDS):
         table = [[Fraction(0)] * len(rank) for _ in rank]
         right = [Fraction(least)] * len(rank)
-        for (t, i), (s, _) in chosen.items():
-            for j, x in enumerate(k[s, t][i]):
-                table[rank[t, i]][rank[s, j]] = x
-            right[rank[t, i]] = residual[s, t][i]
+        for (t, i), step in chosen.items():
+            for j, x in enumerate(k[step][i]):
+                table[rank[t, i]][rank[step[0], j]] = x
+            right[rank[t, i]] = residual[step][i]
         (found,) = solved(tuple(map(tuple, table)), right)
         if found is None or min(found) < 0:
             return None
         b, better = found, False
-        for (s, t), rows in k.items():
+        for step, rows in k.items():
+            s, t = step[0], step[-1]
             for i, row in enumerate(rows):
-                asked = sum((x * b[rank[s, j]] for j, x in enumerate(row)), residual[s, t][i])
-                if asked > b[rank[t, i]] and chosen[t, i] != (s, t):
-                    now = chosen[t, i][0]
-                    held = sum((x * b[rank[now, j]] for j, x in enumerate(k[now, t][i])), residual[now, t][i])
+                asked = sum((x * b[rank[s, j]] for j, x in enumerate(row)), residual[step][i])
+                now = chosen[t, i]
+                if asked > b[rank[t, i]] and now != step:
+                    held = sum((x * b[rank[now[0], j]] for j, x in enumerate(k[now][i])), residual[now][i])
                     if asked > held:
-                        chosen[t, i], better = (s, t), True
+                        chosen[t, i], better = step, True
         if not better:
             return {s: [b[rank[s, i]] for i in range(m)] for s, m in size.items()}
     return None

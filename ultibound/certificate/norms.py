@@ -98,7 +98,7 @@ class NormWriter(Writer):
             for v in d.meaning(name, domain).variables:
                 cells = max(cells, len(v.cells))
         few = cells <= RATIONAL_CELLS and len(below) <= RATIONAL_TERMS
-        long = d.statement.horizon > 1 and any(growing(d.terms, k) for k in below)
+        long = (d.statement.horizon > 1 or len(d.via) > 0) and any(growing(d.terms, k) for k in below)
         return few and not long and not any(d.terms.all[k][0] in IRRATIONAL for k in below)
 
     def matrix_seconds(self, proves: str, bits: int, on: int) -> float:

@@ -92,6 +92,8 @@ class StanceRemarks:
         if r.kind == "settles":
             return "the bound is not below the radius of the set in every stance"
         if r.kind == "steps":
+            if self.claim.horizon > 1:
+                return "steps are not counted yet where several are taken together"
             return "no proved sequence of steps is as short"
         if r.kind in ("bound", "sharp_bound") and r.state is not None:
             return "the constant lies between what is proved and what orbits were found to reach"

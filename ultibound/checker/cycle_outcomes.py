@@ -17,7 +17,8 @@ def farthest(found: GraphResults, stance: str) -> dict[str, Fraction | None]:
     lasting = all(x.lasting for x in found.each.values())
     lines = [x for each in rules for x in found.lines(*each) if lasting and x[1].domains == found.sets()]
     return {
-        s: found.surely((x.concludes[f"{stance}:{s}"], n) for n, x in lines if stance in x.walk) for s in found.states
+        s: found.surely((x.concludes[f"{stance}:{s}"], n) for n, x in lines if f"{stance}:{s}" in x.concludes)
+        for s in found.states
     }
 
 

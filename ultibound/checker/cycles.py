@@ -21,7 +21,7 @@ from .ranges import Ends
 from .theorems import Line, Quantities, require
 
 Sets = dict[str, Domain]  # of every stance
-Gains = Mapping[tuple[str, str], Fraction]  # of every step
+Gains = Mapping[tuple[str, ...], Fraction]  # of every step, or as many as are taken together
 
 
 def around(
@@ -74,9 +74,10 @@ class Walk:
         self.values = [self.maps[s].valued(held, w) for s, w in zip(self.names, each, strict=True)]
         self.centres = {s: self.maps[s].centre(values) for s, values in zip(self.names, self.values, strict=True)}
 
-    @property
-    def steps(self) -> list[tuple[str, str]]:
-        return list(pairwise([*self.names, self.names[0]]))
+    def ways(self, steps: int) -> list[tuple[str, ...]]:
+        """The steps of the walk, so many of them taken together."""
+        names = [*self.names, self.names[0]]
+        return [tuple(names[k : k + steps + 1]) for k in range(0, len(self.names), steps)]
 
     def follow(self, start: list[Ends]) -> list[list[Ends]]:
         """The states from the first to the one after the last step, which is in the first stance again."""
@@ -85,25 +86,28 @@ class Walk:
             found.append(self.maps[s].after(found[-1], values))
         return found
 
-    def farthest(self, states: list[list[Ends]], off: list[list[Fraction]]) -> Quantities:
+    def farthest(self, states: list[list[Ends]], off: list[list[Fraction]] | None = None, every: int = 1) -> Quantities:
         """The largest error of each state in each stance, of an orbit no farther than `off` from what was followed.
 
-        All held values are the same throughout, and so are the targets.
+        All held values are the same throughout, and so are the targets. `every`: of the states at the ends of so many
+        steps taken together.
         """
         found: Quantities = {}
-        for name, xs, far in zip(self.names, states, off, strict=True):
+        names = self.names[::every]
+        off = [[Fraction(0)] * len(states[0])] * len(names) if off is None else off
+        for name, xs, far in zip(names, states[:-1:every], off, strict=True):
             for s, x, c, y in zip(self.maps[name].d.states, xs, self.centres[name], far, strict=True):
                 least = nearest((x[0] - c[1], x[1] - c[0])) - y
                 found[f"{name}:{s}"] = max(least, found.get(f"{name}:{s}", least))
         return found
 
 
-def nearby(walk: Walk, sets: Sets, gains: Gains, states: list[list[Ends]]) -> list[list[Fraction]]:
-    """How far the orbit may be from each state that was followed: proofs/graph.md (8b)."""
-    k = [gains[step] for step in walk.steps]
+def nearby(walk: Walk, sets: Sets, gains: Gains, states: list[list[Ends]], every: int) -> list[list[Fraction]]:
+    """How far the orbit may be from the states at the ends of so many steps taken together: proofs/graph.md (8b)."""
+    k = [gains[way] for way in walk.ways(every)]
     if not 0 <= prod(k) < 1:
         raise Rejected("the product of the gains around the walk is not below 1")
-    norms = [norm for s in walk.names if (norm := sets[s].metric) is not None]
+    norms = [norm for s in walk.names[::every] if (norm := sets[s].metric) is not None]
     ends = [max(y[1] - x[0], x[1] - y[0]) for x, y in zip(states[0], states[-1], strict=True)]
     near, found = norms[0].length(ends) / (1 - prod(k)), list[list[Fraction]]()
     for norm, gain in zip(norms, k, strict=True):
@@ -128,7 +132,7 @@ def orbit(
     low, high = (walk.follow([(x, x)])[-1][0] for x in (a, b))
     if not ((low[0] >= a and high[1] <= b) or (low[1] <= a and high[0] >= b)):
         raise Rejected("start: the ends are not led to opposite sides of themselves")
-    reached(claimed, walk.farthest(walk.follow([(a, b)])[:-1], [[Fraction(0)]] * len(walk.names)))
+    reached(claimed, walk.farthest(walk.follow([(a, b)])))
     return sets, walk.names, True
 
 
@@ -138,18 +142,20 @@ def periodic(
     """proofs/graph.md (8b): a state that a contracting round leads nearly back to itself has an orbit nearby."""
     used, flows = flowing(used)
     sets = kept(used)
-    require(proves, "periodic", used[1:], [("slope", "slope")] * len(g.steps))
-    parts(used[1:], list(g.between))
-    stepped(g, used[1:], sets)
+    require(proves, "periodic", used[1:], [("slope", "slope")] * len(g.walks))
+    parts(used[1:], list(g.along))
+    stepped(g.ends, used[1:], sets)
     walk, first = Walk(g, witness, flows), g.stances[witness["stances"][0]]
     errors = started(first, witness["start"])
     name = walk.names[0]
     start = [(low + e, high + e) for (low, high), e in zip(walk.centres[name], errors, strict=True)]
     if not starts_in(first, sets[name], errors, start):
         raise Rejected("start: not shown to be in the set")
-    gains = {step: line.concludes["gain"] for step, line in zip(g.steps, used[1:], strict=True)}
-    states = walk.follow(start)
-    reached(claimed, walk.farthest(states[:-1], nearby(walk, sets, gains, states)))
+    gains = {way: line.concludes["gain"] for way, line in zip(g.walks, used[1:], strict=True)}
+    states, n = walk.follow(start), g.statement.horizon
+    if len(walk.names) % n:
+        raise Rejected("steps: a whole number of horizons")
+    reached(claimed, walk.farthest(states, nearby(walk, sets, gains, states, n), n))
     return sets, walk.names, True
 
 
@@ -167,8 +173,8 @@ def product(
 ) -> tuple[Sets, tuple[str, ...], bool]:
     """proofs/graph.md (9): Jacobians around a closed walk, whose product shows a gain. Last: whether off a target."""
     used, flows = flowing(used)
-    if proves != "slopes":
-        raise Rejected("a product of slopes proves slopes")
+    if proves != "slopes" or g.statement.horizon != 1:
+        raise Rejected("a product of slopes proves slopes, of single steps")
     sets = kept(used[:1]) if len(used) == 1 else about(g, used)
     names, power = closed(g, witness["stances"], MOST_POINTS), witness["power"]
     if type(power) is not int or not 0 < power <= MOST_POWER:

@@ -32,6 +32,7 @@ from .theorems import OWN
 
 ROUNDS = 400  # steps for which what is attained on every step is added up
 Levels = dict[str, Fraction]  # an error in the norm of each stance
+Way = tuple[str, ...]  # stances, each a step from the one before
 
 
 class StanceResults(SeveralResults):
@@ -97,10 +98,10 @@ class StanceResults(SeveralResults):
 
 
 class StepResults(Results):
-    """Gain and residual of one step, proved and surely taken: proofs/graph.md (2)."""
+    """Gain and residual of one step, or of those taken together, proved and surely taken: proofs/graph.md (2), (10)."""
 
-    def __init__(self, proof: Proof, before: StanceResults, after: StanceResults) -> None:
-        self.proof, self.variant, self.part, self.needed = proof, OWN, f"{before.part}>{after.part}", set[int]()
+    def __init__(self, proof: Proof, part: str, before: StanceResults, after: StanceResults) -> None:
+        self.proof, self.variant, self.part, self.needed = proof, OWN, part, set[int]()
         self.before, line = before, self.one("slope", "slope")
         self.shown = None if line is None else (line.concludes["gain"], line.concludes["residual"])
         if line is not None and (line.domain != before.domain or line.metric != after.metric):
@@ -170,9 +171,9 @@ class GraphResults(Results):
             return "ball", True
         return "smaller ball", self.statement.shrink and wide
 
-    def of_steps(self) -> dict[tuple[str, str], StepResults]:
-        """Every step from a stance to the next; none where one is not proved."""
-        found = {(s, t): StepResults(self.proof, self.each[s], self.each[t]) for s, t in self.graph.steps}
+    def of_steps(self) -> dict[Way, StepResults]:
+        """Every step from a stance to the next, or so many as are taken together; none where one is not proved."""
+        found = {w: StepResults(self.proof, ">".join(w), self.each[w[0]], self.each[w[-1]]) for w in self.graph.walks}
         return found if all(x.shown is not None for x in found.values()) else {}
 
     def bounds(self) -> dict[str, Span]:
@@ -185,7 +186,7 @@ class GraphResults(Results):
         known = all(k is not None and e is not None for k, e in pairs.values())
         for _ in range(ROUNDS if known else 0):
             before = dict(least)
-            for (s, t), (k, e) in pairs.items():
+            for (s, *_, t), (k, e) in pairs.items():
                 sum_ = (k or 0) * before[s] + (e or 0)
                 least[t] = max(least[t], Fraction(sum_ * GRAIN // 1, GRAIN))
             if least == before:
@@ -208,7 +209,7 @@ class GraphResults(Results):
 
     def largest(self, names: list[str]) -> Route:
         """Gain and residual of the steps that leave these stances, and the bounds in them: the largest."""
-        steps = [x for (s, _), x in self.onward.items() if s in names]
+        steps = [x for (s, *_), x in self.onward.items() if s in names]
         bounds = [self.each[s].bound for s in names]
         gain, residual = most([x.gain for x in steps]), most([x.residual for x in steps])
         if steps:
@@ -302,7 +303,8 @@ class GraphResults(Results):
         """proofs/graph.md (6): steps after which a state stays within `to`, from any of these stances."""
         start, end = (constant(e, self.statement.values) for e in (r.start, r.end))
         i, limit, count = self.states.index(r.state), self.wide(several, r.state), None
-        if limit is not None and less(start[1], limit.lower, equal=True):
+        single = self.statement.horizon == 1  # where a horizon starts from is not known at every step
+        if single and limit is not None and less(start[1], limit.lower, equal=True):
             levels = {x.part: start[1] * x.metric.unit(i)[1] for x in several}
             wanted = self.below({name: end[0] / x.metric.support(i) for name, x in self.each.items()})
             count = None if wanted is None else self.count_of(levels, wanted)
@@ -314,10 +316,10 @@ class GraphResults(Results):
         pairs = self.pairs()
         found = dict(wanted)
         for _ in self.each if pairs else ():
-            for (s, t), (k, e) in pairs.items():
+            for (s, *_, t), (k, e) in pairs.items():
                 if k > 0:
                     found[s] = min(found[s], (found[t] - e) / k)
-        kept = all(k * found[s] + e <= found[t] for (s, t), (k, e) in pairs.items())
+        kept = all(k * found[s] + e <= found[t] for (s, *_, t), (k, e) in pairs.items())
         return found if pairs and kept and min(found.values()) >= 0 else None
 
     def count_of(self, levels: Levels, wanted: Levels) -> int | None:
@@ -326,13 +328,13 @@ class GraphResults(Results):
             if all(x <= wanted[s] for s, x in levels.items()):
                 return n
             after: Levels = {}
-            for (s, t), (k, e) in pairs.items():
+            for (s, *_, t), (k, e) in pairs.items():
                 if s in levels:
                     after[t] = max(after.get(t, Fraction(0)), rounded(k * levels[s] + e))
             levels = after
         return None
 
-    def pairs(self) -> dict[tuple[str, str], tuple[Fraction, Fraction]]:
+    def pairs(self) -> dict[Way, tuple[Fraction, Fraction]]:
         """Gain and residual of every step, proved."""
         return {step: x.shown for step, x in self.onward.items() if x.shown is not None}
 

@@ -69,7 +69,7 @@ SHAPES: dict[str, tuple[tuple[str, ...], tuple[str, ...] | None]] = {
 }
 NUMBER = r"\[([1-9][0-9]{0,3})\]:"
 NAMED = re.compile(
-    rf"(?:gains{NUMBER})?(?:over{NUMBER})?(?:([A-Za-z]\w*(?:>[A-Za-z]\w*)?):)?(.*)", re.ASCII | re.DOTALL
+    rf"(?:gains{NUMBER})?(?:over{NUMBER})?(?:([A-Za-z]\w*(?:>[A-Za-z]\w*)*):)?(.*)", re.ASCII | re.DOTALL
 )
 
 

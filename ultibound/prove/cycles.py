@@ -63,12 +63,14 @@ def _map(x: StanceSearch) -> Map:
 
 def growing_round(a: GraphAttempt, on: Sequence[int], lines: Mapping[Step, int]) -> None:
     """Products of Jacobians around walks that refute a gain in any norms: proofs/graph.md (9)."""
+    if a.claim.horizon > 1:
+        return
     asked: dict[tuple[str, ...], Fraction] = {}
     for r in a.claim.requirements:
         if r.kind != "gain" or r.constant is None or r.over:
             continue
         within = tuple(s for s in a.stances if r.stance in (None, s))
-        shown = [a.proof.lines[n].concludes["gain"] for (s, _), n in lines.items() if s in within]
+        shown = [a.proof.lines[n].concludes["gain"] for (s, *_), n in lines.items() if s in within]
         upper = max(shown) if len(shown) == sum(s in within for s, _ in a.steps) else None
         c = constant(r.constant, a.claim.values)[1]
         if upper is None or upper >= c:

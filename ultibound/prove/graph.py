@@ -4,6 +4,7 @@ from __future__ import annotations
 
 from collections.abc import Mapping
 from fractions import Fraction
+from itertools import chain
 from math import floor, log10
 from typing import Any
 
@@ -22,6 +23,7 @@ from ..checker.rules import Proof, Rejected, proof_of
 from ..checker.statement import read_statement
 from ..claim import Claim
 from ..claim.obligations import RANGED, Domain
+from ..claim.provable import walks
 from ..contraction.graph import Family, Samples, bounds, families, radii
 from ..contraction.norms import floats
 from .cycles import going_round, growing_round
@@ -31,7 +33,8 @@ from .stances import StanceSearch, StepSearch
 
 TRIED = 6  # families of norms, the best by samples first
 WIDENED = 5  # times that smaller balls are widened
-Pairs = Mapping[Step, tuple[float, float]]
+Pairs = Mapping[tuple[str, str], tuple[float, float]]
+Way = tuple[str, ...]
 
 
 class GraphAttempt(Attempt):
@@ -63,15 +66,14 @@ class GraphAttempt(Attempt):
             self.stances[s.name] = StanceSearch(claim, s, self.writer, gap, until, watch, self.enclosers, each)
             if each:
                 flows[n] = each[0]
-        self.steps = {
-            (s.name, t): StepSearch(self.stances[s.name], self.stances[t], until, self.enclosers)
-            for s in claim.stances
-            for t in s.then
-        }
+        self.steps = {(s.name, t): self._search((s.name, t)) for s in claim.stances for t in s.then}
+        ways: list[Way] = walks(claim) if claim.horizon > 1 else list(self.steps)
+        self.walks = {w: self.steps[w[0], w[1]] if len(w) == 2 else self._search(w) for w in ways}
         self._prove()
         self.results = results_of(self.proof)
         limits = {f"{x.writer.named(n)}": y for x in self.stances.values() for n, y in x.ranges.limits.items()}
-        limits |= {f"{s}>{t}:{n}": y for (s, t), x in self.steps.items() for n, y in x.ranges.limits.items()}
+        for step in (*self.steps.values(), *self.walks.values()):
+            limits |= {f"{step.part}:{n}": y for n, y in step.ranges.limits.items()}
         self.ranges = self.enclosers[0]
         self.ranges.limits = limits
         self.ranges.spent = sum(x.spent for x in self.enclosers)
@@ -100,25 +102,36 @@ class GraphAttempt(Attempt):
             for k in range(1, len(o.motion.positive) + 1 if o.motion is not None else 1):
                 x.ranges.enclose(o.support(k, x.domain), on[s], gap=DECIDED, side=-1)
         moves = {s: x._movements() for s, x in each.items()}
-        lines: dict[Step, int] = {}
-        for (s, t), step in self.steps.items():
-            moving = moves[t]
-            found = step.proved(norms[t], on[s], moving) if moving is not None else None
-            if found is not None:
-                lines[s, t] = found
-        if len(lines) == len(self.steps):
-            if invariant is None:
-                invariant = self._balls([sets[s] for s in each], lines)
-            if invariant is not None:
-                w.bound(invariant, lines)
-                self._compared(invariant, on, moves)
+        lines = self._pairs_proved(self.walks, norms, on, moves)
+        if invariant is None:
+            single = lines if self.claim.horizon == 1 else self._pairs_proved(self.steps, norms, on, moves)
+            invariant = self._balls([sets[s] for s in each], single) if len(single) == len(self.steps) else None
+        if invariant is not None and len(lines) == len(self.walks):
+            w.bound(invariant, lines)
+            self._compared(invariant, on, moves)
         growing_round(self, list(dict.fromkeys(on.values())), lines)
-        if invariant is not None and (len(self.claim.stances[0].states) == 1 or len(lines) == len(self.steps)):
+        if invariant is not None and (len(self.claim.stances[0].states) == 1 or len(lines) == len(self.walks)):
             going_round(self, invariant, lines)
         for k, r in enumerate(self.claim.requirements, 1):
             for s, x in each.items():
                 if r.kind in RANGED and r.stance in (None, s):
                     x._ranged(k, x.domain, on[s], points=True)
+
+    def _search(self, way: Way) -> StepSearch:
+        return StepSearch([self.stances[s] for s in way], self.until, self.enclosers)
+
+    def _pairs_proved(
+        self, searches: Mapping[Any, StepSearch], norms: Mapping[str, int], on: Mapping[str, int],
+        moves: Mapping[str, list[int] | None],
+    ) -> dict[Step, int]:  # fmt: skip
+        """The lines of gain and residual of steps, or of ways of several: those that have one."""
+        lines: dict[Step, int] = {}
+        for way, step in searches.items():
+            moving = moves[way[-1]]
+            found = step.proved(norms[way[-1]], on[way[0]], moving) if moving is not None else None
+            if found is not None:
+                lines[way] = found
+        return lines
 
     def _regions(self, norms: Mapping[str, int], images: Mapping[str, list[int]] | None) -> int | None:
         """The regions are mapped into those that follow, if their images show it: proofs/graph.md (3a)."""
@@ -154,17 +167,21 @@ class GraphAttempt(Attempt):
         room = {s: np.array(x.room) for s, x in self.stances.items()}
         weights = next(iter(self.stances.values()))._weights()
         rng = np.random.default_rng(0)
-        samples = {e: x.samples(self._around(x.before), rng) for e, x in self.steps.items()}
+        single = {e: x.samples(self._around(x.before), rng) for e, x in self.steps.items()}
+        samples = single if self.claim.horizon == 1 else self._sampled(rng)
         tried: list[tuple[tuple[int, float], int, Family]] = []
-        for n, family in enumerate(families(samples, room, self.claim.metric, weights)):
-            rank = self._by_samples(samples, family, regions)
+        proposed = families(samples, room, self.claim.metric, weights)
+        if samples is not single:
+            proposed = chain(proposed, families(single, room, self.claim.metric, weights))
+        for n, family in enumerate(proposed):
+            rank = self._by_samples(samples, single, family, regions)
             if rank is not None:
                 tried.append((rank, n, family))
         tried.sort(key=lambda x: x[:2])
         best: tuple[float, Family] | None = None
         for _, _, family in tried[:TRIED]:
             self._take(family)
-            size = self._size_of({e: x.pair() for e, x in self.steps.items()}, regions)
+            size = self._size_of(self._measured(self.walks), None if regions else self._measured(self.steps))
             if best is None or size < best[0]:
                 best = size, family
             if size < np.inf and (regions or len(tried) == 1 or size < 0.9):
@@ -188,12 +205,43 @@ class GraphAttempt(Attempt):
         for s, x in self.stances.items():
             x.normed(in_unit(family[s], unit))
 
-    def _by_samples(self, samples: Mapping[Step, Samples], family: Family, regions: bool) -> tuple[int, float] | None:
+    def _sampled(self, rng: np.random.Generator) -> dict[tuple[str, str], Samples]:
+        """Of all ways of several steps between the same two stances together."""
+        found: dict[tuple[str, str], Samples] = {}
+        for way, x in self.walks.items():
+            here, ends = x.samples(self._around(x.before), rng), (way[0], way[-1])
+            known = found.setdefault(ends, here)
+            if known is not here:
+                jacobians = np.concatenate([known.jacobians, here.jacobians])
+                found[ends] = Samples(jacobians, np.concatenate([known.misses, here.misses]))
+        return found
+
+    def _measured(self, searches: Mapping[Any, StepSearch]) -> Pairs:
+        """Gain and residual over the balls (estimates), of all ways between the same two stances the largest."""
+        found: dict[tuple[str, str], tuple[float, float]] = {}
+        for way, x in searches.items():
+            (k, e), known = x.pair(), found.get((way[0], way[-1]), (0.0, 0.0))
+            found[way[0], way[-1]] = max(k, known[0]), max(e, known[1])
+        return found
+
+    def _by_samples(
+        self, samples: Mapping[tuple[str, str], Samples], single: Mapping[tuple[str, str], Samples], family: Family,
+        regions: bool,
+    ) -> tuple[int, float] | None:  # fmt: skip
         """Whether sets are kept and, then, how small the bounds are, by samples; None where the norm is none."""
         try:
             self._take(family)
         except Rejected:
             return None
+        pairs = self._sizes(samples, family)
+        size = self._size_of(pairs, None if regions else self._sizes(single, family))
+        if size < np.inf:
+            return 0, size
+        found = bounds(pairs, list(self.stances))
+        return (2, max(k for k, _ in pairs.values())) if found is None else (1, self._share(found))
+
+    def _sizes(self, samples: Mapping[tuple[str, str], Samples], family: Family) -> Pairs:
+        """Gain and residual by samples, in the norms that were taken."""
         pairs = {}
         for (s, t), x in samples.items():
             v, left = floats(self.stances[t].norm.rows), floats(self.stances[s].norm.inverse)
@@ -202,23 +250,19 @@ class GraphAttempt(Attempt):
             sizes = np.linalg.norm(a, 2, axis=(1, 2)) if round_ else np.abs(a).sum(axis=2).max(axis=1)
             lengths = np.linalg.norm(m, axis=1) if round_ else np.abs(m).max(axis=1)
             pairs[s, t] = float(sizes.max(initial=0.0)), float(lengths.max(initial=0.0))
-        size = self._size_of(pairs, regions)
-        if size < np.inf:
-            return 0, size
-        found = bounds(pairs, list(self.stances))
-        return (2, max(k for k, _ in pairs.values())) if found is None else (1, self._share(found))
+        return pairs
 
     def _share(self, bound: Mapping[str, float]) -> float:
         """The largest share of its room that a bound takes."""
         return max(bound[s] * max(x.shares()) for s, x in self.stances.items())
 
-    def _size_of(self, pairs: Pairs, regions: bool) -> float:
-        """The largest share of its room that a bound takes; inf where the balls are not kept (estimates)."""
+    def _size_of(self, pairs: Pairs, single: Pairs | None) -> float:
+        """The largest share of its room that a bound takes; inf where single steps do not keep balls (estimates)."""
         found = bounds(pairs, list(self.stances))
         if found is None:
             return np.inf
         r = {s: to_float(x.domain.radius) for s, x in self.stances.items()}
-        if not regions and not all(k * r[s] + e <= SPARE * r[t] for (s, t), (k, e) in pairs.items()):
+        if single is not None and not all(k * r[s] + e <= SPARE * r[t] for (s, t), (k, e) in single.items()):
             return np.inf
         return self._share(found)
 
@@ -248,7 +292,7 @@ class GraphAttempt(Attempt):
         """Gain and residual of every step over balls of these radii, a little too large (estimates)."""
         for s, x in self.stances.items():
             x.domain = x._within(x.norm, Fraction(wanted[s]))
-        each = {e: x.pair() for e, x in self.steps.items()}
+        each = self._measured(self.steps)
         return {e: (k * (1 + 1e-6), y * (1 + 1e-6)) for e, (k, y) in each.items()}
 
     def _compared(self, invariant: int, on: Mapping[str, int], moves: Mapping[str, list[int] | None]) -> None:
@@ -259,11 +303,11 @@ class GraphAttempt(Attempt):
         normed: dict[str, Basis] = {s: (x.norm.rows, x.norm.inverse) for s, x in self.stances.items()}
         for bases in [plain] if plain == normed else [plain, normed]:
             tables: dict[Step, tuple[int, int]] = {}
-            for (s, t), step in self.steps.items():
-                pair = step.tables(on[s], bases[s], bases[t])
+            for way, step in self.walks.items():
+                pair = step.tables(on[way[0]], bases[way[0]], bases[way[-1]])
                 if pair is not None:
-                    tables[s, t] = pair
-            if len(tables) == len(self.steps):
+                    tables[way] = pair
+            if len(tables) == len(self.walks):
                 moving = [n for s in self.stances for n in moves[s] or []]
                 self.writer.compared(invariant, tables, moving, bases)
 

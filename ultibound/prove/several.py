@@ -221,7 +221,7 @@ class SeveralAttempt(Attempt):
         kind, _, after = proves.partition("@")
         rows = [[self._miss(s, int(after or 0))] for s in o.states]
         if kind == "slopes":
-            rows = [[o.slope(domain, s, x, int(after or 0)) for x in o.states] for s in o.states]
+            rows = [[self._entry(domain, s, x, int(after or 0)) for x in o.states] for s in o.states]
         elif kind == JOINED:
             rows = [[*(o.slope(domain, s, x) for x in o.states), self._miss(s)] for s in o.states]
         ready = [[(x, self.ranges.runner(x, False)) for x in row] for row in rows]
@@ -229,6 +229,9 @@ class SeveralAttempt(Attempt):
             return Matrices(ready)
         names = [v.name for v in Matrices(ready).variables]
         return Matrices(ready, lambda x: self._into(x, names, domain, norm))
+
+    def _entry(self, domain: Domain, s: str, x: str, steps: int = 0) -> Obligation:
+        return self.obligations.slope(domain, s, x, steps)
 
     def _miss(self, s: str, steps: int = 0) -> Obligation:
         return self.obligations.miss(s, steps)

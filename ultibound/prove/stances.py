@@ -2,6 +2,8 @@
 
 from __future__ import annotations
 
+from collections.abc import Sequence
+
 import numpy as np
 
 from ..bounding.evaluate import to_float
@@ -96,11 +98,13 @@ class StanceSearch(SeveralAttempt):
 
 
 class StepSearch(SeveralAttempt):
-    """The step from a stance to one that follows: Jacobians and misses in the norms of both."""
+    """The step from a stance to one that follows, or several: Jacobians and misses in the norms of first and last."""
 
     writer: StepWriter
 
-    def __init__(self, before: StanceSearch, after: StanceSearch, until: float, others: list[Encloser]) -> None:
+    def __init__(self, way: Sequence[StanceSearch], until: float, others: list[Encloser]) -> None:
+        before, after = way[0], way[-1]
+        self.part, self.way = ">".join(x.stance.name for x in way), [x.obligations.stance for x in way[1:]]
         self.claim, self.gap, self.watch = before.claim, before.gap, before.watch
         self.before, self.after, self.obligations = before, after, before.obligations
         graph, writer = self.obligations.graph, before.writer
@@ -108,8 +112,11 @@ class StepSearch(SeveralAttempt):
         self.ranges.flows, self.leaves, self.needed = before.ranges.flows, {}, 0
         self.targets = before.targets
 
+    def _entry(self, domain: Domain, s: str, x: str, steps: int = 0) -> Obligation:
+        return self.obligations.slope(domain, s, x, steps, self.way)
+
     def _miss(self, s: str, steps: int = 0) -> Obligation:
-        return self.obligations.miss(s, steps, self.after.obligations.stance)
+        return self.obligations.miss(s, steps, self.way)
 
     def _form(self, proves: str, norm: Metric) -> Norm:
         inverse = floats(norm.inverse) if proves == "slopes" else None
@@ -133,7 +140,7 @@ class StepSearch(SeveralAttempt):
 
     def proved(self, norm: int, on: int, moves: list[int]) -> int | None:
         """The line of gain and residual of the step."""
-        self.writer = StepWriter(self.before.writer, self.after.writer, norm)
+        self.writer = StepWriter(self.before.writer, self.part, norm)
         self.domain, self.norm = self.before.domain, self.before.norm
         self.slopes, self.misses = self._norm("slopes", on), self._norm("misses", on)
         if self.slopes is None or self.misses is None:
