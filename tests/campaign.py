@@ -153,7 +153,7 @@ that = "always(abs(next(v)) <= 2)"
 [[require]]
 that = "gain < 0.9"
 [effort]
-gap = 0.02
+gap = 0.05
 cells = 1000
 seconds = 20
 """

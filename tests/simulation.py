@@ -109,7 +109,7 @@ class Walk:
     at: dict[str, str] = field(default_factory=dict)
     correction: str = ""
     asked: list[str] = field(default_factory=list)
-    gap: str = "0.02"
+    gap: str = "0.05"
     effort: str = "cells = 2000\nseconds = 600"
     gains: dict[str, str] = field(default_factory=dict)
 

@@ -3,18 +3,19 @@
 from __future__ import annotations
 
 import json
-from collections.abc import Callable
+from collections.abc import Callable, Iterator
 from fractions import Fraction
 from typing import Any
 
 import pytest
 
 from tests.published.test_published import PENDULUM, require
+from tests.remembered import lines_checked_once
 from tests.test_obligations import spelled_out
 from ultibound.certificate.certificate import Certificate
-from ultibound.checker import check
+from ultibound.checker import check, verified
 from ultibound.checker.derive import Derivation, Domain
-from ultibound.checker.document import canonical, digest
+from ultibound.checker.document import digest
 from ultibound.checker.gains import narrowed as statement_narrowed
 from ultibound.checker.statement import read_statement
 from ultibound.checker.theorems import Piece
@@ -122,6 +123,13 @@ def test_pieces_hold_what_requirements_over_ranges_of_their_own_rest_on(monkeypa
     assert ends(found["contracting"])[1] == Fraction("2.6666666666666666666") and found["best"]["value"] == "8/5"
 
 
+@pytest.fixture
+def checked_once() -> Iterator[None]:
+    with lines_checked_once():
+        yield
+
+
+@pytest.mark.usefixtures("checked_once")
 def test_a_certificate_of_an_interval_spoiled_in_one_place(monkeypatch: pytest.MonkeyPatch) -> None:
     """Every number of the interval, every piece and what it rests on, on a certificate as the search writes it."""
     monkeypatch.setattr(gains, "NEAR", Fraction(1, 20))
@@ -132,7 +140,7 @@ def test_a_certificate_of_an_interval_spoiled_in_one_place(monkeypatch: pytest.M
     def refused(change: Callable[[dict[str, Any]], None]) -> None:
         changed = json.loads(json.dumps(entries))
         change(changed)
-        verdict = check(canonical({**changed, "digest": digest(changed)}))
+        verdict = verified({**changed, "digest": digest(changed)})
         assert verdict.status == "invalid", verdict
 
     at = "gain_intervals"

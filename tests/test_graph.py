@@ -158,6 +158,34 @@ def test_ranges_are_over_every_stance_or_one() -> None:
     assert ends(r["requirements"][4]["value"]) == (-1, Q(1, 2)) and len(r["sensitivities"]) == 2
 
 
+def test_ranges_of_its_own_have_sets_and_gains_of_their_own() -> None:
+    """Bounds are those of the claim that has these ranges, exactly; of a state in the stances it is about."""
+    narrow = 'over = { w = ["-1/2", "1/4"] }'
+    stances = {"left": ("right", "[-8, 8]", "0", "k*x + w/10"), "right": ("left", "[-5, 6]", "0", "x/3 + w/20")}
+    asked = [
+        "bound(x) <= 1", f'"bound(x) <= 1"\n{narrow}', f'"bound(x) <= 1"\n{narrow}\nin = "right"', '"gain <= 3/5"\nover = { k = [0, "3/5"] }',
+        '"radius(x) >= 9/2"\nover = { x = ["-9/2", 5] }\nin = "right"', '"radius(x) >= 3"\nover = { x = [-3, 3] }', '"settles"\nover = { k = ["-1/2", "3/5"] }', '"settles"\nover = { k = [3, 4] }', '"steps(x, 1, 1/5) <= 3"\nover = { w = [0, 0] }',
+    ]  # fmt: skip
+    c = proved(graph(stances, *asked, rest="w = [-1, 1]\n[gains]\nk = 0.5"))
+    found = c.results["requirements"]
+    assert [r["verdict"] for r in found] == ["proved"] * 7 + ["undecided", "proved"]
+    left, right = (Q(1, 20) + Q(1, 3) * Q(1, 10)) / (1 - Q(1, 6)), (Q(1, 10) + Q(1, 2) * Q(1, 20)) / (1 - Q(1, 6))
+    for n, exact in ((0, max(left, right)), (1, max(left, right) / 2), (2, right / 2), (3, Q(3, 5)), (8, Q(2))):
+        just_above(found[n]["value"]["upper"], exact)
+    assert [found[n]["value"]["lower"] for n in (4, 5)] == ["4.5", "3"]
+    assert "over leaves out values of w" in found[1]["limited_by"] and found[3]["limited_by"] is None
+    names = [x["proves"] for x in c.entries["proof"]]
+    assert "over[3]:left>right:slope" in names and not any(n.startswith("over[1]") for n in names)
+
+
+def test_ranges_of_its_own_that_a_bound_rests_on_are_refused() -> None:
+    stances = {"a": ("b", '[-1, "m"]', "0", "x/2"), "b": ("a", "[-1, 1]", "0", "x/2")}
+    with pytest.raises(ClaimError, match="m cannot be followed"):
+        proved(graph(stances, '"settles"\nover = { m = [1, 2] }', rest="w = [-1, 1]\n[gains]\nm = 1"))
+    with pytest.raises(ClaimError, match="outside the region"):
+        proved(graph({"a": ("a", "[-1, 1]", "0.5", "x/2")}, '"settles"\nover = { x = [-1, 0] }'))
+
+
 def test_a_target_that_moves_is_that_of_the_stance_that_follows() -> None:
     """x* = c on the left, −2c on the right: ε of left → right is |−2|δ + the miss, of right → left δ."""
     held = "c = { range = [0.1, 0.2], held = true, change = 0.01 }\nw = [-1, 1]"
@@ -248,7 +276,6 @@ def test_a_norm_of_the_kind_that_is_asked_for(kind: str) -> None:
 
 @pytest.mark.parametrize("change, place", [
     ('route = "split"\ncorrection = ["f"]', "route"),
-    ('[[require]]\nthat = "bound(x) <= 1"\nover = { x = [-1, 1] }', "require[1].over"),
 ])  # fmt: skip
 def test_what_cannot_be_proved_yet_is_said_in_one_line(change: str, place: str) -> None:
     stances = {"a": ("b", "[-1, 1]", "0", "x/2"), "b": ("a", "[-1, 1]", "0", "x/2")}

@@ -23,10 +23,12 @@ from tests.checker import (
     test_matrices,
     test_periodic_boundaries,
     test_product_boundaries,
+    test_pushes_boundaries,
     test_reading,
     test_several_boundaries,
     test_squares_boundaries,
     test_stance_boundaries,
+    test_ways_boundaries,
 )
 from tests.mutants import EQUIVALENT, Battery, Copies, Mutant, campaign, mutants, table
 
@@ -49,7 +51,7 @@ PROOFS = (
     "reals",
     "names",
 )
-STANCES = ("calculus", "motion", "signals", "models", "rates", "flows")
+STANCES = ("calculus", "motion", "pushes", "signals", "models", "rates", "flows")
 NORMS = ("matrices",)
 SEVERAL = ("jacobians", "several", "outcomes", "periodic", "products", "absorbed", "attracting")
 GRAPHS = ("graph", "graph_outcomes", "cycles", "cycle_outcomes")
@@ -76,7 +78,9 @@ def found(copies: Copies) -> dict[str, list[Mutant]]:
 def batteries(copies: Copies) -> dict[str, Battery]:
     """Of each module."""
     squares_cases = {f"squares: {n}": q for n, q in test_squares_boundaries.CASES.items()}
-    reading, stances = Battery(test_reading.CASES, 400), Battery(test_stance_boundaries.CASES | squares_cases)
+    pushes_cases = {f"pushes: {n}": q for n, q in test_pushes_boundaries.CASES.items()}
+    reading = Battery(test_reading.CASES, 400)
+    stances = Battery(test_stance_boundaries.CASES | pushes_cases | squares_cases)
     norms = Battery(test_matrices.CASES)
     horizon_cases = {f"horizon: {n}": q for n, q in test_horizon_boundaries.CASES.items()}
     orbits = (
@@ -85,13 +89,16 @@ def batteries(copies: Copies) -> dict[str, Battery]:
         | test_absorbed_boundaries.CASES
         | test_attracting_boundaries.CASES
     )
-    several = Battery(test_several_boundaries.CASES | orbits | horizon_cases | squares_cases)
+    several = Battery(test_several_boundaries.CASES | orbits | horizon_cases | pushes_cases | squares_cases)
     stance_cases = {f"stance: {n}": q for n, q in test_stance_boundaries.CASES.items()}
-    graphs = Battery(test_graph_boundaries.CASES | test_cycle_boundaries.CASES)
+    graphs = Battery(
+        test_graph_boundaries.CASES | test_cycle_boundaries.CASES | test_ways_boundaries.CASES | pushes_cases
+    )
     several_cases = {f"several: {n}": q for n, q in test_several_boundaries.CASES.items()}
     graph_cases = {f"graph: {n}": q for n, q in test_graph_boundaries.CASES.items()}
     gain_cases = {f"gains: {n}": q for n, q in test_gains_boundaries.CASES.items()}
-    more = several_cases | graph_cases | horizon_cases | squares_cases | gain_cases
+    attracting_cases = {f"attracting: {n}": q for n, q in test_attracting_boundaries.CASES.items()}
+    more = several_cases | graph_cases | horizon_cases | squares_cases | gain_cases | attracting_cases
     proofs = Battery(test_boundaries.CASES | stance_cases | more)
     of_norms, of_reading = dict.fromkeys(NORMS, norms), dict.fromkeys(READING, reading)
     of_several = dict.fromkeys(SEVERAL, several) | dict.fromkeys(GRAPHS, graphs)

@@ -2,14 +2,17 @@
 
 from __future__ import annotations
 
+import re
 from dataclasses import replace
 from fractions import Fraction
 from pathlib import Path
 
 import pytest
 
+from tests.checker.test_pushes_boundaries import GROWN, UNGROWN
 from tests.corpus import CASES, Case
 from tests.stances import GAITS, PARTS
+from ultibound.checker.calculus import Unprovable
 from ultibound.checker.derive import Derivation
 from ultibound.checker.derive import Domain as CheckerDomain
 from ultibound.checker.graph import graph_of
@@ -17,7 +20,7 @@ from ultibound.checker.matrices import metric
 from ultibound.checker.rules import SHAPES
 from ultibound.checker.statement import read_statement
 from ultibound.checker.theorems import THEOREMS
-from ultibound.claim import parse_claim
+from ultibound.claim import Bad, parse_claim
 from ultibound.claim.obligations import RANGED, Domain, Obligation, Obligations
 from ultibound.claim.provable import not_yet, of_stance
 
@@ -216,6 +219,29 @@ def test_both_lists_mean_the_same_stance(name: str, horizon: int) -> None:
                 (v.name, v.cells, v.inside) for v in meaning.variables
             ]
             same(obligation.root, meaning.root)
+
+
+@pytest.mark.parametrize("text, name", [x[:2] for x in (*GROWN, *UNGROWN)])
+def test_both_lists_mean_the_same_pushes(text: str, name: str) -> None:
+    """What a push of one state grows to in another; both refuse the same."""
+    o, d = Obligations(parse_claim(text, {}, {}, "c")), Derivation(read_statement(text, {}, {}))
+    met = re.fullmatch(r"growth\[(\w),(\w)\]", name)
+    if met is None or not {*met.groups()} <= set(o.states):
+        pytest.skip("no such state")
+    zero, n = (Fraction(0), Fraction(0)), len(o.states)
+    mine, theirs = Domain("region", Fraction(0), zero, targets=(zero,) * n), CheckerDomain(False, Fraction(0), zero)
+    if (text, name) not in [x[:2] for x in GROWN]:
+        with pytest.raises(Bad):
+            o.growth(mine, met[1], met[2])
+        with pytest.raises(Unprovable):
+            d.meaning(name, theirs)
+        return
+    obligation, meaning = o.growth(mine, met[1], met[2]), d.meaning(name, theirs)
+    assert (obligation.name, obligation.by) == (name, meaning.by)
+    gates = [(g.op, g.args, g.value if g.op in ("number", "power") else g.name or None) for g in o.graph.gates]
+    assert spelled_out(gates, obligation.root) == spelled_out(d.terms.all, meaning.root)
+    found = [[(v.name, v.cells, v.inside) for v in x.variables] for x in (obligation, meaning)]
+    assert found[0] == found[1]
 
 
 @pytest.mark.parametrize("case", GRAPHS, ids=lambda c: c.name[:40])

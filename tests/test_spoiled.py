@@ -20,13 +20,11 @@ from typing import Any
 
 import pytest
 
-import ultibound.checker
 from tests.conftest import proved
+from tests.remembered import lines_checked_once
 from tests.stances import GAITS, HEIGHT, LIBRARY, PUSHING, stance
 from ultibound.checker import Verdict, check, verified
 from ultibound.checker.document import canonical, digest
-from ultibound.checker.rules import Line, Proof, Rejected
-from ultibound.checker.statement import Statement
 from ultibound.claim import parse_claim
 from ultibound.prove import Attempt
 
@@ -272,50 +270,8 @@ def sample(name: str) -> dict[str, Any]:
 
 
 @pytest.fixture(scope="module", autouse=True)
-def lines_checked_once() -> Iterator[None]:
-    """A claim is read once, and lines after exactly the same claim and lines are not verified anew: only what follows
-    a change is."""
-    known: dict[str, tuple[Line | Rejected, int]] = {}
-    claims: dict[str, Statement] = {}
-    names: dict[int, str] = {}  # of claims that are kept
-    real, reading = Proof.add, ultibound.checker.read_statement
-
-    def read(text: str, settings: dict[str, str], files: dict[str, str]) -> Statement:
-        key = json.dumps([text, settings, files])
-        if key not in claims:
-            claims[key] = reading(text, settings, files)
-            names[id(claims[key])] = key
-        return claims[key]
-
-    def add(proof: Proof, raw: Any) -> None:
-        if not proof.lines:
-            statement = proof.derivation.statement if proof.graph is None else proof.graph.statement
-            claim = names.get(id(statement)) or repr(statement)
-            proof.history = hashlib.sha256(claim.encode())  # type: ignore[attr-defined]  # a note of the test's own
-        digest_ = getattr(proof, "history", None)
-        if digest_ is None:  # lines in the making
-            real(proof, raw)
-            return
-        digest_.update(repr(raw).encode())
-        key = digest_.hexdigest()
-        if key not in known:
-            before = proof.leaves
-            try:
-                real(proof, raw)
-            except Rejected as why:
-                known[key] = why, 0
-                raise
-            known[key] = proof.lines[len(proof.lines)], proof.leaves - before
-            return
-        found, leaves = known[key]
-        if isinstance(found, Rejected):
-            raise Rejected(*found.args)
-        proof.lines[len(proof.lines) + 1] = found
-        proof.leaves += leaves
-
-    with pytest.MonkeyPatch.context() as patch:
-        patch.setattr(Proof, "add", add)
-        patch.setattr(ultibound.checker, "read_statement", read)
+def lines_are_checked_once() -> Iterator[None]:
+    with lines_checked_once():
         yield
 
 
@@ -369,13 +325,23 @@ def spoiled(entries: dict[str, Any], change: Callable[[dict[str, Any]], None]) -
     return changed
 
 
+def with_line(entries: dict[str, Any], number: int, **changes: Any) -> dict[str, Any]:
+    """A proof one of whose lines, counted from 0, says something else; the others are shared."""
+    proof = list(entries["proof"])
+    proof[number] = {**proof[number], **changes}
+    return {**entries, "proof": proof}
+
+
 COUNTED = count()
 
 
 def judged(entries: dict[str, Any], change: Callable[[dict[str, Any]], None]) -> Verdict:
     """The verdict on a changed certificate, hashes recomputed: of its bytes where nothing but its digest is wrong, and
     now and then; else of its entries, which is all that its bytes are read for."""
-    changed = spoiled(entries, change)
+    return verdict_on(spoiled(entries, change))
+
+
+def verdict_on(changed: dict[str, Any]) -> Verdict:
     data = resealed(changed) if next(COUNTED) % EACH_BYTES == 0 else b""
     rehashed(changed)
     verdict = verified(changed)
@@ -541,11 +507,7 @@ def test_a_line_retargeted_is_rejected(entries: dict[str, Any]) -> None:
                 near += [family[-1], *family[max(0, k - 1) : k + 2]]
             others += set(family if LONG else near) - {mine}
         for name in others:
-
-            def spoil(e: dict[str, Any], number: int = number, name: str = name) -> None:
-                e["proof"][number]["proves"] = name
-
-            verdict = judged(entries, spoil)
+            verdict = verdict_on(with_line(entries, number, proves=name))
             assert verdict.status == "invalid", (number, name)
             assert verdict.place.startswith(("proof", "results")) and verdict.reason, verdict
 
@@ -555,11 +517,7 @@ def test_a_rule_or_use_exchanged_is_rejected(entries: dict[str, Any]) -> None:
         for uses in ([], [number + 1], [0], [True], ["1"], line["uses"] * 2, line["uses"][::-1]):
             if uses == line["uses"] or (line["rule"] == "absorbed" and set(uses) == set(line["uses"])):
                 continue  # which takes any number of bounds, in any order
-
-            def spoil(e: dict[str, Any], number: int = number, uses: Any = uses) -> None:
-                e["proof"][number]["uses"] = uses
-
-            assert judged(entries, spoil).status == "invalid", (number, uses)
+            assert verdict_on(with_line(entries, number, uses=uses)).status == "invalid", (number, uses)
         for rule in (
             "range",
             "point",
@@ -577,11 +535,7 @@ def test_a_rule_or_use_exchanged_is_rejected(entries: dict[str, Any]) -> None:
             "smaller-ball",
         ):
             if rule != line["rule"]:
-
-                def spoil_rule(e: dict[str, Any], number: int = number, rule: str = rule) -> None:
-                    e["proof"][number]["rule"] = rule
-
-                rejected(judged(entries, spoil_rule), "proof line")
+                rejected(verdict_on(with_line(entries, number, rule=rule)), "proof line")
 
 
 def test_lines_about_other_ranges_are_not_mixed() -> None:

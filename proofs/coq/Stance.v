@@ -1,7 +1,7 @@
-(** Signals and pushes within a stance: proofs/stance.md (5), (6), proofs/signals.md (3), (4). *)
+(** Signals and pushes within a stance: proofs/stance.md (5), (6), (7), proofs/signals.md (3), (4). *)
 Require Import Reals Lra Lia List.
 From Coquelicot Require Import Coquelicot.
-From Ultibound Require Import Bound Mean Vectors Slope Trajectory.
+From Ultibound Require Import Bound Mean Vectors Norms Slope Trajectory.
 Open Scope R_scope.
 
 (** The Riemann integral. *)
@@ -154,17 +154,40 @@ Proof.
     match type of Dm with is_derive _ _ ?d => replace 0 with d by ring end. exact Dm.
 Qed.
 
-(* Stance (6): for two states without damping and det Φ = 1 a change δ of state i at phase θ changes state i at touchdown by δ (Φ_ii(1)Φ_jj(θ) − Φ_ij(1)Φ_ji(θ)). *)
-Theorem growth_of_two (theta : R) (A : R -> matrix) (B : matrix) (free : R -> vector) (Phi : nat -> nat -> R -> R) (x y : nat -> R -> R) (i j : nat) (delta : R) :
+(* Stance (6): a change of state i leaves every state as it was that it does not lead on to: those outside a group that no state of it enters the rates of. *)
+Theorem not_led_on (n : nat) (theta : R) (A : R -> matrix) (B : matrix) (free : R -> vector) (x y : nat -> R -> R) (i : nat) (delta : R) (group : nat -> bool) :
+  theta < 1 -> (forall k l t, (k < n)%nat -> (l < n)%nat -> theta < t < 1 -> Rabs (A t k l) <= B k l) -> group i = true ->
+  (forall k j t, (k < n)%nat -> (j < n)%nat -> theta < t < 1 -> group k = false -> group j = true -> A t k j = 0) ->
+  changed n theta A free x y i delta -> forall k t, (k < n)%nat -> group k = false -> between theta 1 t -> y k t = x k t.
+Proof.
+  intros L HB Gi Z [C [D S0]] k t Hk Gk Ht.
+  assert (Only : forall r v, theta < r < 1 -> forall q, (q < n)%nat -> group q = false ->
+    sum n (fun j => (if group q then 0 else A r q j) * (if group j then 0 else v j)) = sum n (fun j => A r q j * v j)).
+  { intros r v Hr q Hq Gq. apply sum_ext. intros j Hj. rewrite Gq. destruct (group j) eqn:Gj; [rewrite (Z q j r) by trivial|]; ring. }
+  assert (E : (if group k then 0 else y k t) = (if group k then 0 else x k t)); [|now rewrite Gk in E].
+  apply (unique n theta 1 (fun r q j => if group q then 0 else A r q j) B (fun r q => if group q then 0 else free r q)
+    (fun q r => if group q then 0 else y q r) (fun q r => if group q then 0 else x q r) L) with (i := k); trivial.
+  - intros q j r Hq Hj Hr. destruct (group q); [rewrite Rabs_R0; eapply Rle_trans; [apply Rabs_pos|now apply (HB q j r)]|now apply HB].
+  - intros q Hq. destruct (group q); [split; intros z _ eps He; exists 1; (split; [lra|]); intros; rewrite Rminus_0_r, Rabs_R0; exact He|split; apply (C q Hq)].
+  - intros q r Hq Hr. destruct (group q) eqn:Gq.
+    + split; (rewrite sum_zero by (intros; ring)); rewrite Rplus_0_r; apply (is_derive_const (V := R_NormedModule)).
+    + destruct (D q r Hq Hr) as [Dx Dy]. assert (Oy := Only r (fun j => y j r) Hr q Hq Gq). assert (Ox := Only r (fun j => x j r) Hr q Hq Gq).
+      rewrite Gq in Oy, Ox. cbn in Oy, Ox. rewrite Oy, Ox. split; assumption.
+  - intros q Hq. destruct (group q) eqn:Gq; trivial. rewrite (S0 q Hq).
+    replace (Nat.eqb q i) with false; [ring|]. symmetry. apply Nat.eqb_neq. intros ->. congruence.
+Qed.
+
+(* Stance (6): for two states without damping and det Φ = 1 a change δ of state i at phase θ changes state k at touchdown by δ (Φ_ki(1)Φ_jj(θ) − Φ_kj(1)Φ_ji(θ)). *)
+Theorem growth_of_two (theta : R) (A : R -> matrix) (B : matrix) (free : R -> vector) (Phi : nat -> nat -> R -> R) (x y : nat -> R -> R) (i j q : nat) (delta : R) :
   theta < 1 -> (forall k l t, (k < 2)%nat -> (l < 2)%nat -> theta < t < 1 -> Rabs (A t k l) <= B k l) -> fundamental 2 theta A Phi ->
   (i < 2)%nat -> j = (1 - i)%nat -> Phi i i theta * Phi j j theta - Phi i j theta * Phi j i theta = 1 ->
-  changed 2 theta A free x y i delta -> y i 1 - x i 1 = delta * (Phi i i 1 * Phi j j theta - Phi i j 1 * Phi j i theta).
+  changed 2 theta A free x y i delta -> (q < 2)%nat -> y q 1 - x q 1 = delta * (Phi q i 1 * Phi j j theta - Phi q j 1 * Phi j i theta).
 Proof.
-  intros L HB Fu Hi Ej Det [C [D S0]].
+  intros L HB Fu Hi Ej Det [C [D S0]] Hq.
   set (z := fun k t => x k t + (delta * Phi j j theta * Phi k i t + - (delta * Phi j i theta) * Phi k j t)).
   assert (Hj : (j < 2)%nat) by lia.
-  assert (E : y i 1 = z i 1).
-  { apply (unique 2 theta 1 A B free y z L) with (i := i); trivial; try (unfold between; lra).
+  assert (E : y q 1 = z q 1).
+  { apply (unique 2 theta 1 A B free y z L) with (i := q); trivial; try (unfold between; lra).
     - intros k Hk. split; [apply (C k Hk)|]. unfold z.
       apply (continuous_plus _ (x k) (fun t => delta * Phi j j theta * Phi k i t + - (delta * Phi j i theta) * Phi k j t)); [apply (C k Hk)|].
       apply (continuous_plus _ (fun t => delta * Phi j j theta * Phi k i t) (fun t => - (delta * Phi j i theta) * Phi k j t)); apply continuous_scale; now apply Fu.
@@ -188,4 +211,26 @@ Theorem push_within (e e' growth g delta b r : R) : Rabs e <= b -> e' = e + g * 
 Proof.
   intros E -> G L. eapply Rle_trans; [apply Rabs_triang|]. rewrite Rabs_mult.
   assert (Rabs g * Rabs delta <= growth * Rabs delta) by (apply Rmult_le_compat_r; trivial; apply Rabs_pos). lra.
+Qed.
+
+(* Stance (7): a push δ that has grown to δ g with ‖g‖ <= G, and b' + G|δ| <= R with b' the error without it, leads no farther than R in the norm. *)
+Theorem push_within_norm (n m : nat) (len : vector -> R) (v : matrix) (e g : vector) (delta b r growth : R) : supported m len ->
+  norm n len v e <= b -> norm n len v g <= growth -> b + growth * Rabs delta <= r ->
+  norm n len v (fun i => e i + delta * g i) <= r.
+Proof.
+  intros S E G L. assert (Scale : len (fun i => delta * times n v g i) <= Rabs delta * len (times n v g)).
+  { destruct S as [_ S]. destruct (S (fun i => delta * times n v g i)) as [c [<- H]].
+    replace (dot m c _) with (delta * dot m c (times n v g)) by (unfold dot; rewrite <- sum_scale; apply sum_ext; intros; ring).
+    eapply Rle_trans; [apply Rle_abs|]. rewrite Rabs_mult. apply Rmult_le_compat_l; [apply Rabs_pos|apply H]. }
+  assert (T : norm n len v (fun i => e i + delta * g i) <= norm n len v e + Rabs delta * norm n len v g).
+  { unfold norm. eapply Rle_trans; [|apply Rplus_le_compat_l; exact Scale]. eapply Rle_trans; [|apply (supported_triangle m); exact S].
+    right. apply (supported_ext m); [exact S|]. intros i _. unfold times. rewrite <- sum_scale, <- sum_plus. apply sum_ext; intros; ring. }
+  assert (P := Rmult_le_compat_l _ _ _ (Rabs_pos delta) G). lra.
+Qed.
+
+(* Stance (7): of a box, state by state: no state is led beyond its edge that is not so when it is pushed by G_i|δ|, G_i at least |g_i|. *)
+Theorem push_within_box (n : nat) (e g growth b r : vector) (delta : R) : (forall i, (i < n)%nat -> Rabs (e i) <= b i /\ Rabs (g i) <= growth i) ->
+  (forall i, (i < n)%nat -> b i + growth i * Rabs delta <= r i) -> forall i, (i < n)%nat -> Rabs (e i + delta * g i) <= r i.
+Proof.
+  intros B L i Hi. destruct (B i Hi) as [E G]. now apply (push_within (e i) _ (growth i) (g i) delta (b i) (r i)); [|ring| |apply L].
 Qed.

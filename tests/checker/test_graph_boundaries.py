@@ -6,7 +6,7 @@ less of it is refused.
 
 from __future__ import annotations
 
-from collections.abc import Sequence
+from collections.abc import Iterator, Sequence
 from fractions import Fraction as Q
 from types import SimpleNamespace
 from typing import Any
@@ -15,6 +15,7 @@ import pytest
 
 import ultibound.checker
 from tests.checker.test_boundaries import BASE, GONE, STEP, Draft, Entries, Questions, but, refuses
+from tests.remembered import lines_checked_once
 
 CASES = Questions()
 unit, accept, reject = CASES.unit, CASES.accept, CASES.reject
@@ -227,7 +228,7 @@ def what_is_kept() -> None:
     reject("no such stance", but(good, "proof 0 proves", "up:metric"), "proof line 1", "no stance of the claim")
     for number, rule, proves, reason in ((1, "metric", "metric", "not known of all stances together"), (2, "range", "target[x]", "not known of all stances together"), (12, "matrix", "slopes", "not known of all stances together"), (12, "matrix", "left:slopes", "not known of one stance alone"),
                                          (11, "graph-regions", "left:invariant", "not known of one stance alone"), (11, "graph-regions", "left>right:invariant", "not known of a step"), (4, "largest-ball", "left>right:ball", "not known of a step"), (18, "graph-bound", "bound[split]", "rests on"),
-                                         (23, "graph-componentwise", "compared", "rests on"), (11, "graph-regions", "kept", "rests on"), (1, "metric", "over[1]:left:metric", "not known between stances"), (12, "matrix", "left>right:slope", "proves slopes or misses")):
+                                         (23, "graph-componentwise", "compared", "rests on"), (11, "graph-regions", "kept", "rests on"), (1, "metric", "over[1]:left:metric", "over[1]: no requirement that sets ranges"), (12, "matrix", "left>right:slope", "proves slopes or misses")):
         reject(f"{number} as {rule} of {proves}", but(good, f"proof {number - 1} rule", rule, f"proof {number - 1} proves", proves), f"proof line {number}", reason)
     reject("weights of a single state", but(good, "proof 0 witness", {"kind": "box", "rows": [["2"]], "inverse": [["1/2"]]}), "proof line 1", "the weight of x")
     reject("an ellipsoid of a single state", but(good, "proof 0 witness kind", "ellipsoid"), "proof line 1", "the weight of x")
@@ -351,7 +352,7 @@ def too_many_stances(checker: Any) -> None:
 def rounded_up(checker: Any) -> None:
     o = checker.graph_outcomes
     exact, long = Q(1, 3), Q(1, 3**1300)
-    assert o.rounded(exact) == exact and long < o.rounded(long) <= Q(1, 2**160) and o.rounded(Q(1, 2**2000)) > Q(1, 2**2000) and o.rounded(Q(1, 2**1999)) == Q(1, 2**1999)
+    assert o.rounded(exact) == exact and long < o.rounded(long) <= Q(1, 2**160) and o.rounded(Q(1, 2**480)) > Q(1, 2**480) and o.rounded(Q(1, 2**479)) == Q(1, 2**479)
 
 
 # two states, norms of their own: max(|x|, 2|y|) on the left, |2x + y| and |2x − y| on the right, where y is named first
@@ -629,6 +630,63 @@ def of_the_ground() -> None:
         reject(f"a stance that may not last, {n}", without(good, n), "results", "results.set.kind: 'region' is claimed, None was derived")
 
 
+def over_ranges() -> None:
+    """A requirement over ranges of its own has lines of its own, about all stances; of a state in those it is about."""
+    narrow, same = "over = { p = [\"-1/16\", \"1/16\"] }", 'over = { x = [-1, 1] }\nin = "left"'
+    asked = [("bound(x) < 7/20", "undecided"), (f'"bound(x) <= 7/20"\n{narrow}', "proved"), (f'"bound(x) < 7/20"\n{narrow}', "undecided"), (f'"settles"\n{same}', "proved"), (f'"bound(x) <= 9"\n{narrow}', "undecided"),
+             (f'"bound(x) <= 3/20"\n{narrow}\nin = "left"', "proved"), (f'"push(x) > 0.84"\n{narrow}', "proved")]
+    d = regions([that for that, _ in asked])
+    own = d.proof[:23]  # but for what is taken, which narrower ranges may leave out
+    for n in (2, 3, 4, 6, 7):
+        first = len(d.proof)
+        d.proof += [{**line, "proves": f"over[{n}]:{line['proves']}", "uses": [first + u for u in line["uses"]]} for line in own]
+    good = d.found("region", asked)
+    judged("over", good)
+    for n in range(28, 51):
+        if good["proof"][n - 1]["uses"]:
+            reject(f"over: line {n} rests on the claim's own", but(good, f"proof {n - 1} uses", [u - 27 for u in good["proof"][n - 1]["uses"]]), f"proof line {n}", "uses: lines about other ranges")
+    for n in range(2, len(asked) + 1):
+        if n != 5:
+            kept = [line for line in good["proof"] if not line["proves"].startswith(f"over[{n}]:")]
+            shift = [k for k, line in enumerate(good["proof"], 1) if not line["proves"].startswith(f"over[{n}]:")]
+            kept = [{**line, "uses": [shift.index(u) + 1 for u in line["uses"]]} for line in kept]
+            judged(f"over: no lines of {n}", but(good, "proof", kept, f"results requirements {n - 1} verdict", "undecided"))
+    first = good["proof"][27]
+    assert first["proves"] == "over[2]:left:metric"
+    for name, reason in (("over[1]:left:metric", "over[1]: no requirement that sets ranges for a proof of its own"), ("over[8]:left:metric", "over[8]: no requirement that sets ranges for a proof of its own"), ("over[2]:middle:metric", "middle: no stance of the claim, nor a step from one to the next"),
+                         ("left:over[2]:metric", "a metric rests on no other line"), ("gains[1]:left:metric", "pieces of gains are not known between stances"), ("gains[1]:over[2]:left:metric", "pieces of gains are not known between stances")):
+        reject(f"over: {name}", but(good, "proof 27 proves", name), "proof line 28", reason)
+    # of x on both sides: what the left leads to would leave the right
+    both = [("settles", "proved"), ('"settles"\nover = { x = [-1, 1] }', "proved")]
+    d = regions([that for that, _ in both])
+    first_ = len(d.proof)
+    d.proof += [{**line, "proves": f"over[2]:{line['proves']}", "uses": [first_ + u for u in line["uses"]]} for line in own]
+    reject("over: of both stances", d.found("region", both), "proof line 36", "radius: the ball is not shown to lie in the region of x")
+    d.proof = [*d.proof[:35], {**d.proof[35], "concludes": {"radius": "1", "outer": "1"}}, *d.proof[36:]]
+    reject("over: of both stances, a smaller ball", d.found("region", both), "proof line 38", "left: image[x] is not shown to stay in the region")
+
+
+@unit
+def of_ranges(checker: Any) -> None:
+    """Constants and gains become uncertain, uncertain quantities keep what else is said of them, states are those of the stances it is about."""
+    text = claim("k*x + p", "x/4 + q + c", SPANS, ['"settles"\nover = { x = [0, 1], k = [1, 2], c = [3, 4], p = [5, 6] }\nin = "right"', '"settles"\nover = { x = [0, 1] }', "settles", '"value(x)"\nover = { x = [0, 1] }'],
+                 rest='p = { range = [0, 1], held = true, change = 0.1 }\nq = [0, 1]\n[gains]\nk = 1\nm = 2\n[constants]\nc = 1\ne = 3')
+    whole = checker.statement.read_statement(text, {}, {})
+    one, two = (checker.graph.of_ranges(whole, n) for n in (1, 2))
+
+    def span(q: Any) -> tuple[Q, Q]:
+        return tuple(checker.grammar.constant(e, whole.values)[0] for e in (q.range.lower, q.range.upper))
+
+    assert [[span(s.states["x"]) for s in w.stances] for w in (one, two)] == [[(-1, 1), (0, 1)], [(0, 1), (0, 1)]]
+    assert (set(one.constants), set(one.gains), set(two.constants), set(two.gains)) == ({"e"}, {"m"}, {"c", "e"}, {"k", "m"})
+    assert {n: (span(q), q.held, q.change is not None) for n, q in one.uncertain.items()} == {"p": ((5, 6), True, True), "q": ((0, 1), False, False), "k": ((1, 2), True, False), "c": ((3, 4), True, False)}
+    assert two.uncertain == whole.uncertain and [s.name for s in one.stances] == ["left", "right"] and [s.then for s in one.stances] == [("right",), ("left",)]
+    assert [[bool(r.over) for r in w.requirements] for w in (one, two)] == [[False, True, False, True], [True, False, False, True]] and [r.stance for r in one.requirements] == ["right", None, None, None]
+    for n in (0, 3, 4, 5):
+        with refuses(checker.calculus.Unprovable, f"over[{n}]: no requirement that sets ranges"):
+            checker.graph.of_ranges(whole, n)
+
+
 accept("one map for every step", BASE)
 in_regions()
 what_is_kept()
@@ -643,9 +701,16 @@ turned()
 short_lengths()
 corrected()
 of_the_ground()
+over_ranges()
 in_balls()
 stepping_where()
 # fmt: on
+
+
+@pytest.fixture(scope="module", autouse=True)
+def lines_are_checked_once() -> Iterator[None]:
+    with lines_checked_once():
+        yield
 
 
 @pytest.mark.parametrize("name", CASES)

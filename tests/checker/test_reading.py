@@ -18,6 +18,7 @@ from dataclasses import dataclass, fields, is_dataclass
 from fractions import Fraction as Q
 from functools import cached_property
 from pathlib import Path
+from types import SimpleNamespace
 from typing import Any
 
 import pytest
@@ -448,9 +449,14 @@ def said_of_a_file(checker: Any) -> None:
 def what_is_printed(checker: Any) -> None:
     module = importlib.import_module(f"{checker.__name__}.command")
     line: Any = {"proves": "ball", "rule": "largest-ball", "uses": [], "concludes": {}}
-    assert module.told(line) == "ball: holds  [largest-ball]"
+    assert module.told(line, []) == "ball: holds  [largest-ball]"
     line |= {"uses": [1, 3], "concludes": {"lower": "0", "upper": "1"}}
-    assert module.told(line) == "ball: lower 0, upper 1  [largest-ball from 1, 3]"
+    assert module.told(line, []) == "ball: lower 0, upper 1  [largest-ball from 1, 3]"
+    for proves, said in (("require[2]", "require[2] (b in left)"), ("left:require[1]", "left:require[1] (a)"), ("require[1]:", "require[1]:"), ("require[0]", "require[0]")):
+        assert module.told({**line, "proves": proves}, ["a", "b in left"]) == f"{said}: lower 0, upper 1  [largest-ball from 1, 3]"
+    asked = [SimpleNamespace(text="gain < 1", stance=None, over={}), SimpleNamespace(text="settles", stance="left", over={}), SimpleNamespace(text="settles", stance="left", over={"T": 1, "g": 2}), SimpleNamespace(text="gain < 1", stance=None, over={"T": 1})]
+    derived = SimpleNamespace(statement=SimpleNamespace(requirements=asked))
+    assert module.requirements(SimpleNamespace(derived=derived)) == ["gain < 1", "settles in left", "settles in left over T, g", "gain < 1 over T"]
     assert module.printable("a\x1b[31m\u202eä") == "a?[31m?ä" and module.printable("x" * 401) == "x" * 400
 
     def fails(error: type[BaseException]) -> Callable[..., int]:

@@ -837,7 +837,7 @@ def refused_rules() -> None:
         line = {**proof[n - 1], "uses": []}
         reject(f"{line['rule']} of a single state", but(BASE, "proof 0", line), "proof line 1", f"{line['rule']}: the claim has a single state")
     reject("invariant-rows of a single state", but(BASE, "proof 3 rule", "invariant-rows"), "proof line 4", "invariant-rows: the claim has a single state")
-    for name in ("shell[1]", "line[x]", "growth[x]", "split-slope[x,x]", "split-residual[x]", "slope[x]", "slope[x,z]", "target[z]", "target-slope[x,c]", "support[1]", "image[z]"):
+    for name in ("shell[1]", "line[x]", "growth[x]", "growth[x,x]", "split-slope[x,x]", "split-residual[x]", "slope[x]", "slope[x,z]", "target[z]", "target-slope[x,c]", "support[1]", "image[z]"):
         line = {"rule": "range", "proves": name, "uses": [8], "witness": {"bits": 0, "trees": ["d"]}, "concludes": {"lower": "0", "upper": "0"}}
         reject(f"{name} of two states", but(PLAIN, "proof 17", line), "proof line 18", f"{name} is no obligation of this claim")
 
@@ -937,12 +937,12 @@ def over_ranges() -> None:
             reject(f"over: line {n} rests on the claim's own", own, f"proof line {n}", "uses: lines about other ranges")
 
 
-def rounding_lines() -> Lines:
+def rounding_lines(asked: Sequence[str] = ("settles",)) -> Lines:
     """X and Y stand still for a second; their start is the first map. Lines: 1 flow, 2 to 19 as of `region`, 20 support."""
     still = {"cuts": {}, "pieces": ["0", "1"], "degrees": [1, 0], "bits": 24, "cells": [["16777216 0 0 0 0 0 16777216 0"]]}
     assert STILL["degrees"] == still["degrees"]
     rest = STATED + f'\n[dynamics]\nduration = 1\n[dynamics.start]\nX = "{PAIR[0]}"\nY = "{PAIR[1]}"\n[dynamics.rate]\nX = "0*Y"\nY = "0*X"\n'
-    d = Lines(claim("X", "Y", uncertain=NOISE, rest=rest))
+    d = Lines(claim("X", "Y", uncertain=NOISE, rest=rest, asked=asked))
     in_region(d)
     proof = [{"rule": "trajectory", "proves": "flow", "uses": [], "witness": still, "concludes": {"error": "0"}}]
     for line in d.proof:

@@ -1107,11 +1107,11 @@ MEANINGS: list[tuple[str, str, list[Any]]] = [
      ["(1+(a*power[2](((a/2)*s))))", "", True, "a in [1,2] inside [1,2]", "phase(t) in [0,1] inside [0,1]"]),
     (moving(define='z = "1 + a*t**2"', rates='x = "xd"\nxd = "(9 + dt(dt(z)))/z*x"', duration="a/2", requires=("throughout(x*t/(a/2) + (a/2)*x/(a/2) <= 1)",)), "require[1]",
      ["((((((flow[11](((2*s)-1),a)*0)+(flow[12](((2*s)-1),a)*v))*((a/2)*s))/(a/2))+((flow[11](((2*s)-1),a)*0)+(flow[12](((2*s)-1),a)*v)))-1)", "", True, "a in [1,2] inside [1,2]", "phase(t) in [0,1] inside [0,1]", "v in [-1/5,6/5] inside [-1/5,6/5]"]),
-    (moving(step="xd"), "growth[v]",
+    (moving(step="xd"), "growth[v,v]",
      ["((flow[22](1)*flow[11](((2*s)-1)))-(flow[21](1)*flow[12](((2*s)-1))))", "", True, "phase(t) in [0,1] inside [0,1]"]),
-    (moving(step="x"), "growth[v]",
+    (moving(step="x"), "growth[v,v]",
      ["((flow[11](1)*flow[22](((2*s)-1)))-(flow[12](1)*flow[21](((2*s)-1))))", "", True, "phase(t) in [0,1] inside [0,1]"]),
-    (moving(rates='x = "-2*x"', start='x = "v"', step="x"), "growth[v]",
+    (moving(rates='x = "-2*x"', start='x = "v"', step="x"), "growth[v,v]",
      ["(flow[11](1)/flow[11](((2*s)-1)))", "", True, "phase(t) in [0,1] inside [0,1]"]),
     (OVER % "c = [0, 1]", "require[1]",
      ["((((flow[21](1,a,c)*0)+(flow[22](1,a,c)*v))+(flow[23](1,a,c)*d(xd)))/2)", "", True, "a in [1,2] inside [1,2]", "c in [0,1] inside [0,1]", "d(xd) in [0,1] inside [0,1]", "v in [-1/5,6/5] inside [-1/5,6/5]"]),
@@ -1123,10 +1123,10 @@ MEANINGS: list[tuple[str, str, list[Any]]] = [
      ["(((flow[21](1,a)*0)+(flow[22](1,a)*v))/2)", "", True, "a in [1,2] inside [1,2]", "v in [-1/5,6/5] inside [-1/5,6/5]"]),
 ]
 UNMEANT: list[tuple[str, str, str]] = [
-    (moving(step="xd/2"), "growth[v]", "a push within the stance is about a state that is a continuous one at touchdown"), (moving(step="v"), "growth[v]", "a push within the stance is about a state that is a continuous one at touchdown"),
-    (moving(rates='x = "xd - x"\nxd = "x"', step="xd"), "growth[v]", "a push within the stance is followed for two continuous states without damping"),
-    (moving(rates='x = "xd"\nxd = "x - xd"', step="xd"), "growth[v]", "a push within the stance is followed for two continuous states without damping"),
-    (moving(rates='x = "xd"\nxd = "y"\ny = "x"', start='x = 0\nxd = "v"\ny = 1', step="xd"), "growth[v]", "a push within the stance is followed for two continuous states without damping"),
+    (moving(step="xd/2"), "growth[v,v]", "a push within the stance is about a state that is a continuous one at touchdown"), (moving(step="v"), "growth[v,v]", "a push within the stance is about a state that is a continuous one at touchdown"),
+    (moving(rates='x = "xd - x"\nxd = "x"', step="xd"), "growth[v,v]", "a push within the stance is followed for two continuous states without damping"),
+    (moving(rates='x = "xd"\nxd = "x - xd"', step="xd"), "growth[v,v]", "a push within the stance is followed for two continuous states without damping"),
+    (moving(rates='x = "xd"\nxd = "y"\ny = "x"', start='x = 0\nxd = "v"\ny = 1', step="xd"), "growth[v,v]", "a push within the stance is followed for two continuous states without damping"),
     (moving(), "support[2]", "support[2] is no obligation of this claim"), (moving(), "support[0]", "support[0] is no obligation"), (DRIVEN, "support[3]", "support[3] is no obligation of this claim"),
     (DRIVEN.replace("x - xd/2 + t", "xd + d"), "image[v]", "a signal within the stance stands outside the rates"), (OVER % "d = [0, 1]", "require[1]", "d: a signal within the stance keeps its range"),
     *((OVER % over, "require[1]", "the stance is not shown to last beyond the range of the claim") for over in ("c = [0, 2]", "a = [1, 3]", "c = [-1, 1]")),
@@ -1135,7 +1135,7 @@ UNMEANT: list[tuple[str, str, str]] = [
     *((GAIN.replace(old, new) % ("x", "k = [2, 4]"), "require[1]", "a name that also sets an exponent or the end of a range is not followed there")
       for old, new in (('"1"\n[dynamics.s', '"a**k"\n[dynamics.s'), ('"%s"', '"%s*a**k"'), ("x = 0", 'x = "v**k"'))),
     (GAIN.replace('"1"\n[dynamics.s', '"k/3"\n[dynamics.s') % ("x", "k = [2, 4]"), "require[1]", "the rates of the stance rest on what is varied here"),
-    ('format = 1\n[state]\nv = [0, 1]\n[next]\nv = "v/2"\n[target]\nv = 0\n', "support[1]", "support[1] is no obligation"), ('format = 1\n[state]\nv = [0, 1]\n[next]\nv = "v/2"\n[target]\nv = 0\n', "growth[v]", "growth[v] is no obligation"),
+    ('format = 1\n[state]\nv = [0, 1]\n[next]\nv = "v/2"\n[target]\nv = 0\n', "support[1]", "support[1] is no obligation"), ('format = 1\n[state]\nv = [0, 1]\n[next]\nv = "v/2"\n[target]\nv = 0\n', "growth[v,v]", "growth[v,v] is no obligation"),
 ]
 
 
@@ -1272,7 +1272,7 @@ def stood(asked: Sequence[str], growth: tuple[str, str] = ("1", "1"), support: t
     d.range("target-miss[v]", "-1/4", "1/4", [1], bits=24)
     d.theorem("slope", "slope", [7, 8], gain="1/2", residual="1/4")
     d.theorem("ultimate-bound", "bound[slope]", [5, 9], bound="1/2")
-    d.range("growth[v]", *growth, [5, 1], bits=24)
+    d.range("growth[v,v]", *growth, [5, 1], bits=24)
     for n, that in enumerate(asked, 1):
         if that.startswith(("throughout", "always", "value")):
             ends = ("-3/4", "7/4") if "t" in that[10:] else ("-3/4", "3/4")
@@ -1300,7 +1300,7 @@ def stances_at_equality() -> None:
     for n, (that, verdict) in enumerate(ASKED):
         for other in sorted({"proved", "refuted"} - {verdict}):
             reject(f"stance: {that} {other}", but(entries, f"results requirements {n} verdict", other), "results", f"[{n + 1}].verdict: {other} is claimed, {verdict} was derived")
-    for number, key, value, reason in ((4, "upper", "3/4", "image"), (6, "lower", "1", "support[1]"), (6, "upper", "1", "support[1]"), (7, "lower", "1/2", "slope[v,v]"), (11, "upper", "1", "growth[v]"), (11, "lower", "1", "growth[v]")):
+    for number, key, value, reason in ((4, "upper", "3/4", "image"), (6, "lower", "1", "support[1]"), (6, "upper", "1", "support[1]"), (7, "lower", "1/2", "slope[v,v]"), (11, "upper", "1", "growth[v,v]"), (11, "lower", "1", "growth[v,v]")):
         beyond = str(Q(value) + (Q("1" + STEP) if key == "lower" else -Q("1" + STEP)))
         reject(f"stance: line {number} {key}", but(entries, f"proof {number - 1} concludes {key}", beyond), f"proof line {number}", reason)
     # the flow: by its name, resting on nothing, where there are dynamics; used last, and where it is needed

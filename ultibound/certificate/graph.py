@@ -11,8 +11,8 @@ from ..checker.graph import across, largest, of_part
 from ..checker.matrices import Leaf, Matrix, Metric
 from ..checker.rules import Proof, Rejected
 from ..checker.several import moved, movements
-from ..checker.theorems import OWN
-from .lines import upward
+from ..checker.theorems import Variant
+from .lines import Writer, upward
 from .norms import NormWriter, solved, texts
 
 Step = tuple[str, ...]  # from a stance to the next, or a way of several steps
@@ -26,7 +26,7 @@ class StanceWriter(NormWriter):
 
     def __init__(self, proof: Proof, raw: list[dict[str, Any]], part: str) -> None:
         self.proof, self.raw, self.part, self.flow = proof, raw, part, None
-        self.derivation = of_part(proof.graph, OWN, part)
+        self.derivation = of_part(proof.graph, part)
 
 
 class StepWriter(StanceWriter):
@@ -70,6 +70,11 @@ class StepWriter(StanceWriter):
 
 class GraphWriter(StanceWriter):
     """Lines about all stances together."""
+
+    def adopt(self, other: Writer, variant: Variant, needed: set[int]) -> None:
+        super().adopt(other, variant, needed)
+        if other.proof.graph is not None:
+            self.proof.graphs[variant] = other.proof.graph
 
     def bound(self, invariant: int, steps: Mapping[Step, int]) -> int | None:
         """The bound in the norm of each stance; None where the steps do not contract together."""

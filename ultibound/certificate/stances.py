@@ -6,7 +6,7 @@ from collections.abc import Mapping
 from dataclasses import dataclass
 
 from ..checker.results import Outcome, Results
-from ..checker.theorems import Line
+from ..checker.theorems import Line, Variant
 from ..claim import Claim
 from ..claim.constants import constant
 from ..claim.model import Requirement
@@ -47,12 +47,12 @@ class StanceRemarks:
             parts += [f"{n}: {STOPS.get(x, x)}" for n in names if (x := self.limits.get(n, ""))]
             parts.append("interrupted" if self.interrupted else self.why(r))
         if outcome.verdict == "refuted":
-            parts.append(self.shown(r, asked))
+            parts.append(self.shown(r, asked, Variant(0, number if r.over else 0)))
         return ("; ".join(p for p in parts if p)[:900] or None), pursue
 
-    def shown(self, r: Requirement, asked: list[str]) -> str:
+    def shown(self, r: Requirement, asked: list[str], about: Variant) -> str:
         """The orbit or product that refutes a requirement, if one does."""
-        lines = [x for x in self.results.proof.lines.values() if x.walk]
+        lines = [x for x in self.results.proof.lines.values() if x.walk and x.variant == about]
         if r.kind == "gain":
             words = [x for x in lines if x.rule == "graph-product" and set(x.walk) <= set(asked)]
             best = max(words, key=lambda x: x.concludes["lower"], default=None)

@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import json
 import os
+import re
 import stat
 import sys
 from typing import Any
@@ -30,14 +31,15 @@ def run(path: str, claim: str | None, all_proved: bool, as_json: bool, lines: bo
     if verdict.status != "valid":
         print(f"INVALID: {printable(verdict.place)}: {printable(verdict.reason)}", file=people)
         return 1
+    asked = requirements(verdict)
     if lines:
         for number, line in enumerate(verdict.proof, 1):
-            print(f"{number:4d}  {told(line)}", file=people)
+            print(f"{number:4d}  {told(line, asked)}", file=people)
     counts = ", ".join(f"{verdict.verdicts.count(v)} {v}" for v in ("proved", "refuted", "undecided"))
     print(f"VALID: {verdict.lines} lines and {verdict.leaves} leaves hold", file=people)
     print(f"requirements: {counts}", file=people)
-    for entry in (verdict.results or {}).get("requirements", []):
-        print(f"  {entry['verdict']:<10} {printable(entry['that'])}", file=people)
+    for outcome, that in zip(verdict.verdicts, asked, strict=True):
+        print(f"  {outcome:<10} {printable(that)}", file=people)
     print("This is about the model in the claim, not about a machine.", file=people)
     if as_json:
         print(json.dumps({**(verdict.results or {}), "certificate": path}, ensure_ascii=False, sort_keys=True))
@@ -75,11 +77,22 @@ def about(verdict: Verdict, path: str) -> Verdict:
     return verdict
 
 
-def told(line: dict[str, Any]) -> str:
+def requirements(verdict: Verdict) -> list[str]:
+    """What is asked, of which stance and over ranges of which names."""
+    found = []
+    for r in verdict.derived.statement.requirements if verdict.derived else ():
+        where = f" in {r.stance}" if r.stance is not None else ""
+        found.append(r.text + where + (f" over {', '.join(r.over)}" if r.over else ""))
+    return found
+
+
+def told(line: dict[str, Any], asked: list[str]) -> str:
+    about = re.search(r"require\[([1-9][0-9]*)\]$", line["proves"])
+    name = f"{line['proves']} ({asked[int(about[1]) - 1]})" if about else line["proves"]
     uses = f" from {', '.join(map(str, line['uses']))}" if line["uses"] else ""
     said = {**line["concludes"], **(line["witness"] if line["rule"] == "gains" else {})}
     ends = ", ".join(f"{k} {v}" for k, v in said.items()) or "holds"
-    return printable(f"{line['proves']}: {ends}  [{line['rule']}{uses}]")
+    return printable(f"{name}: {ends}  [{line['rule']}{uses}]")
 
 
 def printable(text: str) -> str:

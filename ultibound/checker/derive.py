@@ -15,8 +15,9 @@ from .grammar import constant
 from .horizon import onward, together
 from .matrices import Metric
 from .model import Quantity, Range, Requirement, Statement
-from .motion import PHASE, Motion, copy, grown, landed, motion, supported
+from .motion import PHASE, Motion, copy, landed, motion, supported
 from .names import Names, mentioned
+from .pushes import grown
 from .ranges import Ends
 from .sector import applies, of_sector
 from .signals import excess, followed, instant
@@ -172,7 +173,9 @@ class Derivation:
 
     def meaning(self, name: str, domain: Domain | None) -> Meaning:
         """The obligation of that name; the set is needed where the state runs through it."""
-        found = re.fullmatch(r"(target|image|target-miss|target-slope|slope)(@[^\[]+)?\[([^,]+)(?:,([^,]+))?\]", name)
+        found = re.fullmatch(
+            r"(target|image|target-miss|target-slope|slope|growth)(@[^\[]+)?\[([^,]+)(?:,([^,]+))?\]", name
+        )
         kind, after, s, by = found.groups() if found else ("", None, self.state, None)
         if s not in self.states or (after is not None and kind not in ("target-miss", "slope")):
             raise Unprovable(f"{name} is no obligation of this claim")
@@ -196,6 +199,10 @@ class Derivation:
         if kind == "slope" and by in self.states:
             bound, given = self.through(domain, {})
             return self.over(self.after(steps, bound, s, by), by, given, True)
+        if kind == "growth" and by in self.states and self.motion is not None:
+            bound, given = self.through(domain, {})
+            phase = self.terms.put("variable", (), PHASE)
+            return self.over(grown(self.names(bound), self.motion, s, by, phase), "", given, True)
         if len(self.states) == 1 and (one := self.of_one(name, domain)) is not None:
             return one
         support = re.fullmatch(r"support\[([1-9][0-9]{0,3})\]", name)
@@ -210,7 +217,7 @@ class Derivation:
         raise Unprovable(f"{name} is no obligation of this claim")
 
     def of_one(self, name: str, domain: Domain) -> Meaning | None:
-        """Obligations of routes and pushes that are known for a single state only."""
+        """Obligations of routes that are known for a single state only."""
         s = self.state
         if name in (f"split-slope[{s},{s}]", f"split-residual[{s}]") and self.statement.correction:
             return self.split(domain, name.startswith("split-slope"))
@@ -227,10 +234,6 @@ class Derivation:
             return self.shell(domain, int(shell[1]))
         if name == f"line[{s}]" and domain.radii:
             return self.line(domain)
-        if name == f"growth[{s}]" and self.motion is not None:
-            bound, given = self.through(domain, {})
-            phase = self.terms.put("variable", (), PHASE)
-            return self.over(grown(self.names(bound), self.motion, s, phase), "", given, True)
         return None
 
     def under_any_course(self, domain: Domain, parts: int, split: bool) -> Meaning:

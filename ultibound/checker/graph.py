@@ -9,14 +9,14 @@ from fractions import Fraction
 from typing import Any
 
 from .calculus import Unprovable
-from .derive import Derivation, Domain
+from .derive import Derivation, Domain, varied
 from .horizon import together
 from .jacobians import Table
 from .matrices import Leaf, Matrix, Metric, metric
 from .model import Statement
 from .numerals import Rejected
 from .several import ball, gone_through, hull, matrix, moved, movements, numbers, shown, stated, stretch
-from .theorems import Line, Quantities, Variant, parted, require
+from .theorems import Line, Quantities, parted, require
 
 MOST_STANCES = 16
 MOST_WALKS = 64
@@ -80,6 +80,18 @@ def along(stances: Mapping[str, Derivation], walk: tuple[str, ...]) -> Derivatio
     return found
 
 
+def of_ranges(statement: Statement, number: int) -> Statement:
+    """The claim with what `over` of a requirement says: of states in the stances it is about. Raises Unprovable."""
+    alone = {s.name: varied(of_stance(statement, s.name), number) for s in statement.stances}
+    r, one = statement.requirements[number - 1], next(iter(alone.values()))
+    stances = tuple(
+        replace(s, states=alone[s.name].stances[0].states) if r.stance in (None, s.name) else s
+        for s in statement.stances
+    )
+    asked = tuple(replace(x, over={}) if n == number else x for n, x in enumerate(statement.requirements, 1))
+    return replace(one, stances=stances, requirements=asked, horizon=statement.horizon)
+
+
 def toward(d: Derivation, after: Derivation) -> Derivation:
     """A stance whose steps lead to the target of the stance that follows."""
     found = copy(d)
@@ -87,12 +99,10 @@ def toward(d: Derivation, after: Derivation) -> Derivation:
     return found
 
 
-def of_part(g: Graph | None, variant: Variant, part: str) -> Derivation:
+def of_part(g: Graph | None, part: str) -> Derivation:
     """What a line about a stance, a step or (the part that has no name) all of them refers to."""
     if g is None or (part and part not in g.stances and part not in g.between and part not in g.along):
         raise Rejected(f"{part}: no stance of the claim, nor a step from one to the next")
-    if variant:
-        raise Unprovable("ranges for a proof of its own are not known between stances")
     return g.stances.get(part) or g.between.get(part) or g.along.get(part) or g.first
 
 

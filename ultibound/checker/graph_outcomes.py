@@ -28,7 +28,7 @@ from .results import (
     verdict,
 )
 from .rules import Line, Proof, Rejected
-from .theorems import OWN
+from .theorems import OWN, Variant
 
 ROUNDS = 400  # steps for which what is attained on every step is added up
 Levels = dict[str, Fraction]  # an error in the norm of each stance
@@ -38,8 +38,8 @@ Way = tuple[str, ...]  # stances, each a step from the one before
 class StanceResults(SeveralResults):
     """One stance: its set and norm, and what all stances together prove of its states."""
 
-    def __init__(self, proof: Proof, graph: Graph, name: str, kept: dict[str, Domain] | None) -> None:
-        self.proof, self.variant, self.part, self.needed = proof, OWN, name, set[int]()
+    def __init__(self, whole: GraphResults, graph: Graph, name: str, kept: dict[str, Domain] | None) -> None:
+        self.proof, self.variant, self.part, self.needed = whole.proof, whole.variant, name, set[int]()
         self.derivation = graph.stances[name]
         self.statement, self.states = self.derivation.statement, self.derivation.states
         self.state, self.any = self.states[0], self.statement.shrink
@@ -100,8 +100,9 @@ class StanceResults(SeveralResults):
 class StepResults(Results):
     """Gain and residual of one step, or of those taken together, proved and surely taken: proofs/graph.md (2), (10)."""
 
-    def __init__(self, proof: Proof, part: str, before: StanceResults, after: StanceResults) -> None:
-        self.proof, self.variant, self.part, self.needed = proof, OWN, part, set[int]()
+    def __init__(self, part: str, before: StanceResults, after: StanceResults) -> None:
+        self.proof, self.variant = before.proof, before.variant
+        self.part, self.needed = part, set[int]()
         self.before, line = before, self.one("slope", "slope")
         self.shown = None if line is None else (line.concludes["gain"], line.concludes["residual"])
         if line is not None and (line.domain != before.domain or line.metric != after.metric):
@@ -120,15 +121,16 @@ class StepResults(Results):
 class GraphResults(Results):
     """Everything `results` may claim of a claim of stances."""
 
-    def __init__(self, proof: Proof) -> None:
-        if proof.graph is None:
+    def __init__(self, proof: Proof, variant: Variant = OWN) -> None:
+        graph = proof.stanced(variant)
+        if graph is None:
             raise Rejected("no stances")
-        self.proof, self.graph, self.variant, self.needed = proof, proof.graph, OWN, set[int]()
+        self.proof, self.graph, self.variant, self.needed = proof, graph, variant, set[int]()
         self.derivation, self.statement = self.graph.first, self.graph.statement
         self.states, self.any = self.derivation.states, self.statement.shrink
         invariant = self.one("graph-regions", "invariant") or self.one("graph-balls", "invariant")
         kept = None if invariant is None else invariant.domains
-        self.each = {name: StanceResults(proof, self.graph, name, kept) for name in self.graph.stances}
+        self.each = {name: StanceResults(self, self.graph, name, kept) for name in self.graph.stances}
         self.settled = invariant is not None and all(x.lasts for x in self.each.values())
         self.kind, self.whole = self.set_of(invariant if self.settled else None)
         # smaller balls that are not kept, or a stance that is not shown to last, are no sets to speak of
@@ -147,7 +149,8 @@ class GraphResults(Results):
         self.gain, self.residual, self.bound = route.gain, route.residual, route.bound
         self.routes = {"slope": route} if self.onward else {}
         self.reported, self.sharp, self.best, self.push = "slope", None, None, None
-        self.requirements = [self.required(n, r) for n, r in enumerate(self.statement.requirements, 1)]
+        numbered = enumerate(self.statement.requirements, 1)
+        self.requirements = [self.required(n, r) for n, r in numbered if not variant.over or n == variant.over]
         self.needed |= {n for x in (*self.each.values(), *self.onward.values()) for n in x.needed}
 
     def stances(self) -> dict[str, Results]:
@@ -173,7 +176,7 @@ class GraphResults(Results):
 
     def of_steps(self) -> dict[Way, StepResults]:
         """Every step from a stance to the next, or so many as are taken together; none where one is not proved."""
-        found = {w: StepResults(self.proof, ">".join(w), self.each[w[0]], self.each[w[-1]]) for w in self.graph.walks}
+        found = {w: StepResults(">".join(w), self.each[w[0]], self.each[w[-1]]) for w in self.graph.walks}
         return found if all(x.shown is not None for x in found.values()) else {}
 
     def bounds(self) -> dict[str, Span]:
@@ -226,7 +229,7 @@ class GraphResults(Results):
         if r.kind in RANGED:
             return together([x.ranged(number, r) for x in several])
         if r.over:
-            return Outcome("undecided", None)
+            return self.elsewhere(number)
         if r.kind == "settles":
             return self.inside(several)
         c = constant(r.constant, self.statement.values)
@@ -234,7 +237,7 @@ class GraphResults(Results):
             span = self.wide(several, r.state)
             return verdict(span is not None and compared(r.relation, Span(span.lower, None), c), False, span)
         if r.kind == "push":
-            spans = [] if r.during else [x.pushes[r.state] for x in several]
+            spans = [self.pushed_through(x, r.state) if r.during else x.pushes[r.state] for x in several]
             span = least([x for x in spans if x is not None]) if spans and None not in spans else None
             return verdict(span is not None and less(c[1], span.lower), False, span)
         if r.kind == "steps":
@@ -299,6 +302,13 @@ class GraphResults(Results):
         spans = [x.radii[state] if state is not None else x.radius for x in several] if self.settled else [None]
         return least([x for x in spans if x is not None]) if None not in spans else None
 
+    def pushed_through(self, x: StanceResults, s: str) -> Span | None:
+        """proofs/stance.md (7): a push during a stance leads into the sets of those that may follow it."""
+        grown = x.grown_to(s)
+        left = [self.each[t].left_for(grown) for before, t in self.graph.steps if before == x.part]
+        known = [y for y in left if y is not None]
+        return Span(min(known), None) if known and len(known) == len(left) else None
+
     def counted(self, several: list[StanceResults], r: Any, c: tuple[Fraction, Fraction]) -> Outcome:
         """proofs/graph.md (6): steps after which a state stays within `to`, from any of these stances."""
         start, end = (constant(e, self.statement.values) for e in (r.start, r.end))
@@ -323,10 +333,13 @@ class GraphResults(Results):
         return found if pairs and kept and min(found.values()) >= 0 else None
 
     def count_of(self, levels: Levels, wanted: Levels) -> int | None:
-        pairs = self.pairs()
+        pairs, once = self.pairs(), Levels()
         for n in range(MOST_STEPS // len(pairs)):
             if all(x <= wanted[s] for s, x in levels.items()):
                 return n
+            if levels == once:  # then they go round for ever
+                return None
+            once = levels if n & (n - 1) == 0 else once
             after: Levels = {}
             for (s, *_, t), (k, e) in pairs.items():
                 if s in levels:

@@ -258,27 +258,3 @@ def supported(names: Names, motion: Motion, root: int, phase: int) -> int:
     """One of these at a phase of the stance."""
     by, _ = held(names, motion)
     return replaced(names.terms, root, {**by, names.terms.put("variable", (), PHASE): phase})
-
-
-def grown(names: Names, motion: Motion, state: str, phase: int) -> int:
-    """How a change within the stance has grown by touchdown: an entry of Φ(T) Φ(t)⁻¹ (proofs/stance.md (6))."""
-    terms, put = names.terms, names.terms.put
-    op, _, name = terms.all[names.expression(names.statement.stances[0].next[state])]
-    if op != "variable" or name not in motion.states:
-        raise Unprovable("a push within the stance is about a state that is a continuous one at touchdown")
-    by, _ = held(names, motion)
-    gates = tuple(by[put("variable", (), p.name)] for p in motion.parameters)
-    one, two = (put("number", (), Fraction(n)) for n in (1, 2))
-    sigma = put("sub", (put("mul", (two, phase)), one))
-
-    def entry(at: int, i: int, j: int) -> int:
-        return put("flow", (at, *gates), f"{i} {j}")
-
-    if len(motion.states) == 1:
-        return put("div", (entry(one, 1, 1), entry(sigma, 1, 1)))
-    if len(motion.states) != 2 or motion.matrix[0][0] is not None or motion.matrix[1][1] is not None:
-        raise Unprovable("a push within the stance is followed for two continuous states without damping")
-    i = motion.states.index(str(name)) + 1
-    j = 3 - i
-    straight = put("mul", (entry(one, i, i), entry(sigma, j, j)))
-    return put("sub", (straight, put("mul", (entry(one, i, j), entry(sigma, j, i)))))

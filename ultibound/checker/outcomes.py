@@ -3,13 +3,14 @@
 from __future__ import annotations
 
 from fractions import Fraction
+from itertools import product
 from typing import Any
 
-from .grammar import constant
+from .grammar import Ends, constant
 from .matrices import Metric, dot
 from .results import NOTHING, Outcome, Results, Route, Span, compared, greater, less, opposed, verdict
 from .rules import Proof, Rejected
-from .theorems import OWN, Variant
+from .theorems import OWN, Variant, ends
 
 
 class SeveralResults(Results):
@@ -169,6 +170,29 @@ class SeveralResults(Results):
             left = None if span is None else span / self.metric.unit(self.states.index(s))[1]
         return Span(left, None) if left is not None and left > 0 else None
 
+    def grown_to(self, s: str) -> list[Ends] | None:
+        """What a push of a state within the stance has grown to by touchdown, in each state: proofs/stance.md (6)."""
+        lines = [self.one("range", f"growth[{x},{s}]") for x in self.states]
+        found = [ends(x) for x in lines if x is not None and x.domain == self.domain]
+        return found if len(found) == len(self.states) else None
+
+    def left_for(self, grown: list[Ends] | None) -> Fraction | None:
+        """How large a push may be that leads into this set and has grown so by then: proofs/stance.md (7)."""
+        if not self.whole or grown is None:
+            return None
+        if self.kind == "region":
+            rooms = [(self.edges[s].lower, self.bounds.get(s)) for s in self.states]
+            sizes = [max(-low, high) for low, high in grown]
+        else:
+            rooms, sizes = [(self.radius.lower, self.within())], [max(self.metric.most(x) for x in product(*grown))]
+        left = [
+            None if edge is None or bound is None else (edge - bound) / size
+            for (edge, bound), size in zip(rooms, sizes, strict=True)
+            if size > 0
+        ]
+        known = [x for x in left if x is not None and x > 0]
+        return min(known) if known and len(known) == len(left) else None
+
     def required(self, number: int, r: Any) -> Outcome:
         if r.stance is not None or r.kind not in (
             "bound",
@@ -187,7 +211,8 @@ class SeveralResults(Results):
             span = self.radii[r.state]
             return verdict(span is not None and compared(r.relation, Span(span.lower, None), c), False, span)
         if r.kind == "push":
-            span = None if r.during else self.pushes[r.state]
+            left = self.left_for(self.grown_to(r.state)) if r.during else None
+            span = (None if left is None else Span(left, None)) if r.during else self.pushes[r.state]
             return verdict(span is not None and less(c[1], span.lower), False, span)
         if r.kind == "steps":
             return self.stepped_along(r, c)

@@ -16,7 +16,7 @@ from .sector import applies
 from .theorems import OWN, PAIRS, Variant, ends, levels, magnitude, movement
 
 MOST_STEPS = 20_000
-LONG, GRAIN = 2000, 2**160  # bits of a denominator beyond which levels are rounded up, and to what
+LONG, GRAIN = 480, 2**160  # bits of a denominator beyond which levels are rounded up, and to what
 
 
 @dataclass(frozen=True)
@@ -405,7 +405,7 @@ class Results:
 
     def pushed_within(self, r: Any, c: tuple[Fraction, Fraction]) -> Outcome:
         """What is left of the radius, over the growth of a change until touchdown: proofs/stance.md (6)."""
-        line, least = self.one("range", f"growth[{self.state}]"), None
+        line, least = self.one("range", f"growth[{self.state},{self.state}]"), None
         if line is not None and line.domain == self.domain and self.push is not None and self.push.lower is not None:
             least = self.push.lower / magnitude(line)
         # a change right before touchdown grows no more: what would lead an orbit out does so within the stance too

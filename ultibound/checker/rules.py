@@ -16,7 +16,7 @@ from .derive import Derivation, varied
 from .flows import trajectory
 from .forms import walk
 from .gains import narrowed, sensitivity_gain, stated
-from .graph import Graph, graph_of, of_part, seen_from, stepping
+from .graph import Graph, graph_of, of_part, of_ranges, seen_from, stepping
 from .jacobians import inside
 from .model import Statement
 from .numerals import Rejected, quantity
@@ -88,12 +88,18 @@ class Proof:
     leaves: int = 0
     variants: dict[Variant, Derivation] = field(default_factory=dict)
     graph: Graph | None = None  # of named stances
+    graphs: dict[Variant, Graph] = field(default_factory=dict)  # and over the ranges of one requirement
+
+    @property
+    def statement(self) -> Statement:
+        """The claim."""
+        return self.derivation.statement if self.graph is None else self.graph.statement
 
     def about(self, variant: Variant, part: str = "") -> Derivation:
         """What the claim asks, or what it asks over a piece of gains or the ranges of one requirement, or of a stance
         or a step."""
         if self.graph is not None or part:
-            return of_part(self.graph, variant, part)
+            return of_part(self.stanced(variant), part)
         if variant and variant not in self.variants:
             if variant.over:
                 statement = varied(self.about(Variant(variant.piece)).statement, variant.over)
@@ -101,6 +107,16 @@ class Proof:
                 statement = narrowed(self.derivation, self.piece(variant.piece))
             self.variants[variant] = Derivation(statement)
         return self.variants[variant] if variant else self.derivation
+
+    def stanced(self, variant: Variant) -> Graph | None:
+        """The stances of the claim, or of what it asks over the ranges of one requirement."""
+        if self.graph is None or not variant:
+            return self.graph
+        if variant.piece:
+            raise Unprovable("pieces of gains are not known between stances")
+        if variant not in self.graphs:
+            self.graphs[variant] = Graph(of_ranges(self.statement, variant.over))
+        return self.graphs[variant]
 
     def piece(self, number: int) -> Piece:
         for line in self.lines.values():
@@ -130,10 +146,10 @@ class Proof:
         if any(line.variant != variant for line in used):
             raise Rejected("uses: lines about other ranges")
         try:
-            d = self.about(variant, part)
-            if self.graph is not None and (
-                one := around(self.graph, part, rule, proves, used, witness, claimed)
-                or stepping(self.graph, part, rule, proves, used, witness, claimed)
+            d, g = self.about(variant, part), self.stanced(variant)
+            if g is not None and (
+                one := around(g, part, rule, proves, used, witness, claimed)
+                or stepping(g, part, rule, proves, used, witness, claimed)
             ):
                 line = replace(one, uses=tuple(uses))
                 self.leaves += one.leaves

@@ -247,28 +247,3 @@ def supported(scope: Scope, m: Motion, root: int, phase: int) -> int:
     """One of `positive` at a phase of the stance."""
     by, _ = held(scope, m)
     return substituted(scope.graph, root, {**by, scope.graph.add("variable", name=PHASE): phase})
-
-
-def grown(scope: Scope, m: Motion, state: str, phase: int) -> int:
-    """Φ(T) Φ(t)⁻¹ of the continuous state that becomes the next state, at a phase t (proofs/stance.md (6))."""
-    g = scope.graph
-    landing = scope.at_touchdown(state)
-    if g.gates[landing].op != "variable" or g.gates[landing].name not in m.states or len(m.states) > 2:
-        raise Bad(f"next.{state} is not one of at most two continuous states, so a push during the stance has no place")
-    i = m.states.index(g.gates[landing].name) + 1
-    by, _ = held(scope, m)
-    values = [by[g.add("variable", name=p.name)] for p in m.parameters]
-    one = g.number(1)
-    early = g.add("sub", g.add("mul", g.number(2), phase), one)
-
-    def flow(sigma: int, a: int, b: int) -> int:
-        return g.add("flow", sigma, *values, name=f"{a} {b}")
-
-    if len(m.states) == 1:
-        return g.add("div", flow(one, 1, 1), flow(early, 1, 1))
-    if any(m.matrix[k][k] is not None for k in range(2)):
-        raise Bad("a push during the stance needs rates without damping: no state in its own rate")
-    j = 3 - i  # the determinant of Φ is 1
-    return g.add(
-        "sub", g.add("mul", flow(one, i, i), flow(early, j, j)), g.add("mul", flow(one, i, j), flow(early, j, i))
-    )

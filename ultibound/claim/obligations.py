@@ -16,7 +16,8 @@ from .constants import constant
 from .errors import Bad
 from .graph import Graph
 from .model import Claim, Quantity, Range, Requirement, Stance
-from .motion import PHASE, TIME, Motion, copy, grown, landed, motion, supported
+from .motion import PHASE, TIME, Motion, copy, landed, motion, supported
+from .pushes import grown
 from .resolve import Scope
 from .signals import excess, followed, instant
 
@@ -331,14 +332,14 @@ class Obligations:
         root = supported(self._scope(bound), self.motion, self.motion.positive[number - 1], phase)
         return self._of(f"support[{number}]", root, "", ranges)
 
-    def growth(self, domain: Domain) -> Obligation:
-        """growth[s]: how a change of the state within the stance has grown by touchdown (proofs/stance.md (6))."""
+    def growth(self, domain: Domain, of: str = "", by: str = "") -> Obligation:
+        """growth[s,x]: how a push of x within the stance has grown in s by touchdown (proofs/stance.md (6), (7))."""
         bound, ranges = self._set(domain)
-        scope = self._scope(bound)
+        s, x = of or self.state, by or self.state
         if self.motion is None:
             raise ValueError("no stance")
         phase = self.graph.add("variable", name=PHASE)
-        return self._of(f"growth[{self.state}]", grown(scope, self.motion, self.state, phase), "", ranges)
+        return self._of(f"growth[{s},{x}]", grown(self._scope(bound), self.motion, s, x, phase), "", ranges)
 
     def coefficients(self) -> list[Obligation]:
         """Coefficients of the rates over region, uncertain values and phases, for where they are not defined."""

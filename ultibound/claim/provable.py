@@ -8,8 +8,8 @@ from fractions import Fraction
 from .constants import constant
 from .errors import Bad, nearest
 from .expression import Expression, Node
-from .model import Claim, Quantity, Range, Requirement
-from .obligations import RANGED, Domain, Obligations
+from .model import Claim, Quantity, Range, Requirement, Stance
+from .obligations import Domain, Obligations
 
 MOST_STATES = 6
 MOST_STANCES = 16
@@ -19,8 +19,7 @@ MOST_WALKS = 64  # of the steps of a horizon
 def varied(claim: Claim, number: int) -> Claim:
     """The claim with what `over` of a requirement says for its ranges (proofs/obligations.md)."""
     r = claim.requirements[number - 1]
-    stance, uncertain = claim.stances[0], dict(claim.uncertain)
-    states = {n: replace(q, range=r.over[n]) if n in r.over else q for n, q in stance.states.items()}
+    uncertain, states = dict(claim.uncertain), claim.stances[0].states
     for name, given in r.over.items():
         if name in uncertain:
             uncertain[name] = replace(uncertain[name], range=given, values=None)
@@ -31,9 +30,14 @@ def varied(claim: Claim, number: int) -> Claim:
         constants={n: e for n, e in claim.constants.items() if n not in r.over},
         gains={n: e for n, e in claim.gains.items() if n not in r.over},
         uncertain=uncertain,
-        stances=(replace(stance, states=states),),
+        stances=tuple(_over_states(s, r) if r.stance in (None, s.name) else s for s in claim.stances),
         requirements=tuple(replace(x, over={}) if x is r else x for x in claim.requirements),
     )
+
+
+def _over_states(stance: Stance, r: Requirement) -> Stance:
+    states = {n: replace(q, range=r.over[n]) if n in r.over else q for n, q in stance.states.items()}
+    return replace(stance, states=states)
 
 
 def narrowed(claim: Claim, gain: str, low: Fraction, high: Fraction) -> Claim:
@@ -100,12 +104,11 @@ def not_yet(claim: Claim) -> str | None:
         if low != high:
             return f"metric.weights.{s}: a weight is used exactly; state a rational number"
     for number, r in enumerate(claim.requirements, 1):
-        if several and r.during:
-            return f"require[{number}]: a push during the stance can be proved for a single state only, yet"
-        if r.during and stance.dynamics is not None:
+        if r.during and r.stance is None and stance.dynamics is not None:
             try:
                 o = Obligations(claim)
-                o.growth(Domain("region", Fraction(0), (Fraction(0), Fraction(0))))
+                for s in o.states:
+                    o.growth(Domain("region", Fraction(0), (Fraction(0), Fraction(0))), s, r.state or "")
             except Bad as problem:
                 return f"require[{number}]: {problem}"
         folded, ends = _folded(claim, r)
@@ -137,11 +140,6 @@ def _not_between(claim: Claim) -> str | None:
         return f"route: {claim.route} is not known between stances yet; use slope or best"
     if claim.horizon > 1 and (why := _not_together(claim)) is not None:
         return f"horizon: {why}"
-    for number, r in enumerate(claim.requirements, 1):
-        if r.during:
-            return f"require[{number}]: a push during the stance cannot be proved between stances yet"
-        if r.over and r.kind not in RANGED:
-            return f"require[{number}].over: ranges for a set and gain of its own cannot be proved between stances yet"
     return None
 
 

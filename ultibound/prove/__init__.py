@@ -46,9 +46,9 @@ def prove(claim: Claim, watch: Watch | None = None, gain_interval: str | None = 
     if problem is not None:
         raise ClaimError.of(claim.place, *problem.split(": ", 1))
     try:
-        whole = [of_stance(claim, s.name) for s in claim.stances] if claim.stances[0].name else [claim]
-        for c in (*whole, *(varied(claim, n) for n in apart(claim))):
-            undefined = undefined_point(c)
+        for c in (claim, *(varied(claim, n) for n in apart(claim))):
+            alone = [of_stance(c, s.name) for s in c.stances] if c.stances[0].name else [c]
+            undefined = next((x for x in map(undefined_point, alone) if x is not None), None)
             if undefined is not None:
                 raise ClaimError.of(claim.place, *undefined)
         return _proved(claim, watch or (lambda stage, leaves, high: None), gain_interval)

@@ -66,8 +66,8 @@ def growing_round(a: GraphAttempt, on: Sequence[int], lines: Mapping[Step, int])
     if a.claim.horizon > 1:
         return
     asked: dict[tuple[str, ...], Fraction] = {}
-    for r in a.claim.requirements:
-        if r.kind != "gain" or r.constant is None or r.over:
+    for n, r in enumerate(a.claim.requirements, 1):
+        if r.kind != "gain" or r.constant is None or not (n == a.variant if a.variant else not r.over):
             continue
         within = tuple(s for s in a.stances if r.stance in (None, s))
         shown = [a.proof.lines[n].concludes["gain"] for (s, *_), n in lines.items() if s in within]

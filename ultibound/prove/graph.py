@@ -18,16 +18,18 @@ from ..certificate.graph import Basis, Step
 from ..certificate.results import assembled
 from ..certificate.stances import StanceRemarks
 from ..checker.derive import Derivation
+from ..checker.graph import of_ranges
 from ..checker.graph_outcomes import results_of
 from ..checker.rules import Proof, Rejected, proof_of
 from ..checker.statement import read_statement
+from ..checker.theorems import Variant
 from ..claim import Claim
 from ..claim.obligations import RANGED, Domain
-from ..claim.provable import walks
+from ..claim.provable import varied, walks
 from ..contraction.graph import Family, Samples, bounds, families, radii
 from ..contraction.norms import floats
 from .cycles import going_round, growing_round
-from .one import COARSE, DECIDED, Attempt, Known
+from .one import COARSE, DECIDED, Attempt, Known, apart
 from .several import SHARES, SPARE, in_unit
 from .stances import StanceSearch, StepSearch
 
@@ -54,22 +56,25 @@ class GraphAttempt(Attempt):
             sharp,
             variant,
         )
-        self.proof: Proof = proof_of(read_statement(claim.text, claim.settings, claim.data))
+        statement = read_statement(claim.text, claim.settings, claim.data)
+        self.proof: Proof = proof_of(of_ranges(statement, variant) if variant else statement)
         self.raw: list[dict[str, Any]] = []
         self.writer = CycleWriter(self.proof, self.raw, "")
         self.enclosers: list[Encloser] = []
         self.smaller, self.curve_may_help = None, False
-        flows = known if known is not None else {}
+        self.known = known if known is not None else {}
         self.stances: dict[str, StanceSearch] = {}
-        for n, s in enumerate(claim.stances):
-            each: Known = {0: flows[n]} if n in flows else {}
-            self.stances[s.name] = StanceSearch(claim, s, self.writer, gap, until, watch, self.enclosers, each)
+        for n, s in enumerate(claim.stances, variant * len(claim.stances)):
+            each: Known = {variant: self.known[n]} if n in self.known else {}
+            self.stances[s.name] = StanceSearch(claim, s, self.writer, gap, until, watch, self.enclosers, each, variant)
             if each:
-                flows[n] = each[0]
+                self.known[n] = each[variant]
         self.steps = {(s.name, t): self._search((s.name, t)) for s in claim.stances for t in s.then}
         ways: list[Way] = walks(claim) if claim.horizon > 1 else list(self.steps)
         self.walks = {w: self.steps[w[0], w[1]] if len(w) == 2 else self._search(w) for w in ways}
         self._prove()
+        for number in () if variant else apart(claim):
+            self._over(number)
         self.results = results_of(self.proof)
         limits = {f"{x.writer.named(n)}": y for x in self.stances.values() for n, y in x.ranges.limits.items()}
         for step in (*self.steps.values(), *self.walks.values()):
@@ -101,6 +106,7 @@ class GraphAttempt(Attempt):
             o = x.obligations
             for k in range(1, len(o.motion.positive) + 1 if o.motion is not None else 1):
                 x.ranges.enclose(o.support(k, x.domain), on[s], gap=DECIDED, side=-1)
+            x._growth(x.domain, on[s])
         moves = {s: x._movements() for s, x in each.items()}
         lines = self._pairs_proved(self.walks, norms, on, moves)
         if invariant is None:
@@ -114,7 +120,7 @@ class GraphAttempt(Attempt):
             going_round(self, invariant, lines)
         for k, r in enumerate(self.claim.requirements, 1):
             for s, x in each.items():
-                if r.kind in RANGED and r.stance in (None, s):
+                if r.kind in RANGED and r.stance in (None, s) and not self.variant:
                     x._ranged(k, x.domain, on[s], points=True)
 
     def _search(self, way: Way) -> StepSearch:
@@ -132,6 +138,13 @@ class GraphAttempt(Attempt):
             if found is not None:
                 lines[way] = found
         return lines
+
+    def _over(self, number: int) -> None:
+        """A requirement over ranges of its own: a proof of the same kind, whose lines are taken in."""
+        claim = varied(self.claim, number)
+        own = GraphAttempt(claim, self.gap, self.until, self.watch, self.sharp, None, number, known=self.known)
+        self.enclosers[0].interrupted |= own.ranges.interrupted
+        self.writer.adopt(own.writer, Variant(0, number), own.results.needed)
 
     def _regions(self, norms: Mapping[str, int], images: Mapping[str, list[int]] | None) -> int | None:
         """The regions are mapped into those that follow, if their images show it: proofs/graph.md (3a)."""

@@ -220,9 +220,15 @@ class Attempt:
         return self.writer.theorem("slope", f"slope@{steps}", uses, concludes)
 
     def _growth(self, domain: Domain, on: int) -> None:
-        """How changes within the stance grow, where a push asks for it: proofs/stance.md (6)."""
-        if any(r.during for r in self.claim.requirements):
-            self.ranges.enclose(self.obligations.growth(domain), on, magnitude=True)
+        """How pushes within the stance grow, where they are asked for: proofs/stance.md (6)."""
+        o = self.obligations
+        asked = [r for n, r in enumerate(self.claim.requirements, 1) if n == self.variant or not self.variant]
+        for s in dict.fromkeys(r.state for r in asked if r.during and r.stance is None and not r.over):
+            for x in o.states:
+                growth = o.growth(domain, x, s or "")
+                rough = self.ranges.search(growth, True, COARSE)
+                floor = self.gap * max(abs(rough.upper), abs(rough.lower))  # either end is as close as the larger needs
+                self.ranges.enclose(growth, on, points=False, floor=floor)
 
     def _flow(self) -> None:
         """The flow of the stance over all that its rates depend on: proofs/trajectory.md."""

@@ -83,6 +83,7 @@ class SeveralAttempt(Attempt):
         way, through = self._course(self.domain, ball, on, lambda j: self._step(j, on, moves), self._largest(self.norm))
         for k in range(1, len(o.motion.positive) + 1 if o.motion is not None else 1):
             self.ranges.enclose(o.support(k, through), way, gap=DECIDED, side=-1)
+        self._growth(self.domain, on)
         lost = way == on == ball and self.claim.horizon > 1  # steps within a horizon may leave the region
         slopes, misses = (None, None) if lost else (self._norm("slopes", on), self._norm("misses", on))
         pair = self._contraction(slopes, misses, moves)

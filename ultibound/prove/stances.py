@@ -49,11 +49,11 @@ class StanceSearch(SeveralAttempt):
 
     def __init__(
         self, claim: Claim, stance: Stance, whole: StanceWriter, gap: float, until: float, watch: Watch,
-        others: list[Encloser], known: Known,
+        others: list[Encloser], known: Known, variant: int = 0,
     ) -> None:  # fmt: skip
-        """`whole`: the proof of all stances; `others`: the ranges of all of them, so far."""
+        """`whole`: the proof of all stances; `others`: the ranges of all of them, so far; else as in `Attempt`."""
         self.claim, self.gap, self.until, self.watch = of_stance(claim, stance.name), gap, until, watch
-        self.stance, self.variant, self.known, self.terse = stance, 0, known, False
+        self.stance, self.variant, self.known, self.terse = stance, variant, known, False
         self.obligations, self.writer = Obligations(self.claim), StanceWriter(whole.proof, whole.raw, stance.name)
         self.ranges = Shared(self.claim, self.obligations.graph, self.writer, gap, until, watch, others)
         self._flow()

@@ -68,7 +68,9 @@ def _outcome(found: Accepted) -> list[Block]:
     claim, results = found.claim, found.results
     rows = judged(claim, results)
     blocks: list[Block] = [verdicts(rows, bool(claim.stances[0].name))]
-    remarks: list[Text] = [(Code(r.that), f": {r.remark}") for r in rows if r.remark]
+    remarks: list[Text] = [
+        (Code(r.that), f"{f' in the {r.stance} stance' if r.stance else ''}: {r.remark}") for r in rows if r.remark
+    ]
     if remarks:
         blocks.append(said("Remarks of the search (not proved):"))
         blocks.append(Items(tuple(remarks)))

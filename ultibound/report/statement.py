@@ -191,9 +191,8 @@ def required(claim: Claim) -> list[Block]:
         where: list[Formula | str] = []
         for n, given in r.over.items():
             where += ["; " if where else "", symbol(n), " in ", interval(written(given.lower), written(given.upper))]
-        rows.append(
-            ((str(number_),), (Code(r.text),), (MEANINGS[r.kind],), (*where,) or ("as declared",), (r.stance or "all",))
-        )
+        meaning = MEANINGS[r.kind] + (", at any instant of the stance" if r.during else "")
+        rows.append(((str(number_),), (Code(r.text),), (meaning,), (*where,) or ("as declared",), (r.stance or "all",)))
     head: tuple[Text, ...] = (("no.",), ("requirement",), ("in words",), ("over",), ("stance",))
     if not claim.stances[0].name:
         head, rows = head[:-1], [r[:-1] for r in rows]
@@ -276,6 +275,9 @@ def _listed(claim: Claim) -> list[tuple[Obligation, str, Formula]]:
     for k in range(1, len(o.motion.positive) + 1 if o.motion is not None else 1):
         what = "the duration" if k == 1 else "what the leg's push and the signals' one-sided effect rest on"
         add(functools.partial(o.support, k, region), words(f"{what}, above 0 throughout"))
+    pushed = dict.fromkeys(r.state or "" for r in claim.requirements if r.during and r.stance is None)
+    for s, x in ((s, x) for x in pushed for s in o.states):
+        add(functools.partial(o.growth, region, s, x), words(f"what a push of {x} within the stance grows to in {s}"))
     for n, r in enumerate(claim.requirements, 1):
         if r.kind in ("value", "sensitivity", "always", "throughout") and r.stance is None:
             add(functools.partial(o.requirement, n, region), _asked(r))
