@@ -1,6 +1,6 @@
 """Random claims of two and three stances, and trajectories steered against what is proved of them.
 
-`python -m tests.graph_campaign [COUNT]` prints the table of the campaign; tests/test_graph_soundness.py runs it small.
+`python -m tests.graph_campaign [COUNT [HORIZON]]` prints the table of the campaign; tests/test_graph_soundness.py runs it small.
 """
 
 from __future__ import annotations
@@ -57,7 +57,7 @@ class Tally:
         )
 
 
-def drawn(seed: int) -> Case:
+def drawn(seed: int, horizon: int = 1) -> Case:
     """One to three states, two or three stances, any order; a third of the claims with a target that moves."""
     rng = random.Random(seed)
     n, shape = 1 + seed % 3, SHAPES[seed // 3 % 3]
@@ -74,7 +74,7 @@ def drawn(seed: int) -> Case:
         matrix[s] = np.round(a * strength / max(1e-9, np.abs(a).sum(axis=1).max()) * rng.choice([1, 1, 1.6, 0.4]), 3)
         bend[s], wide[s] = round(rng.uniform(-0.2, 0.2), 2), [round(rng.uniform(1.2, 2.5), 1) for _ in states]
     follow = {s: aim[then[s][0]] for s in names}
-    top = f"format = 1\nshrink = {rng.choice(['true', 'false'])}\n"
+    top = f"format = 1\nhorizon = {horizon}\nshrink = {rng.choice(['true', 'false'])}\n"
     kind = rng.choice(["auto", "auto", "box", "polytope", "ellipsoid"])
     top += f'[metric]\nkind = "{kind}"\n' if n > 1 else ""
     text = top + "[uncertain]\nd = [-0.02, 0.02]\ne = [-0.01, 0.02]\n"
@@ -152,9 +152,9 @@ def values(rng: np.random.Generator, count: int) -> Any:
     return np.where(rng.random((count, 3)) < 0.8, np.where(rng.random((count, 3)) < 0.5, low, high), x)
 
 
-def run(seed: int, tally: Tally) -> None:
+def run(seed: int, tally: Tally, horizon: int = 1) -> None:
     """Proves a claim and looks for a trajectory, a point or a count of steps that goes beyond what is proved."""
-    case, rng = drawn(seed), np.random.default_rng(seed)
+    case, rng = drawn(seed, horizon), np.random.default_rng(seed)
     tally.claims += 1
     try:
         r = proved(case.text).results
@@ -260,5 +260,5 @@ def ranges(case: Case, r: dict[str, Any], stance: str, after: Any) -> None:
 if __name__ == "__main__":
     total = Tally()
     for number in range(int(sys.argv[1]) if len(sys.argv) > 1 else 60):
-        run(number, total)
+        run(number, total, int(sys.argv[2]) if len(sys.argv) > 2 else 1)
     print(total.table())

@@ -10,7 +10,8 @@ import numpy as np
 import pytest
 
 from tests.conftest import proved
-from tests.test_graph import TWO, graph, verdicts
+from tests.test_graph import TWO, graph, matrices, verdicts
+from ultibound.claim import ClaimError
 from ultibound.contraction.words import fastest_round
 
 
@@ -143,3 +144,83 @@ def test_words_go_round_allowed_steps_only() -> None:
     assert turn is not None and set(turn.stances) == {"a", "b"} and abs(turn.rate - sqrt(0.2)) <= 1e-2
     assert fastest_round(jacobians, {"a": ["b"], "b": ["b"]}).stances == ("b",)  # type: ignore[union-attr]
     assert fastest_round({"a": grow * 0}, {"a": ["a"]}) is None
+
+
+WALKED = {"left": "-x/2 + w/10", "right": "x/3 + w/20"}
+
+
+@pytest.mark.parametrize("steps", [2, 3])
+def test_several_steps_together_give_away_nothing_more(steps: int) -> None:
+    """Of one state single steps lose nothing: the same bounds at every step, and the gain of so many steps."""
+    names = ["left", "right"]
+    stances = {s: (names[1 - k], "[-8, 8]", "0", step) for k, (s, step) in enumerate(WALKED.items())}
+    r = proved(graph(stances, "settles", "gain <= 1", top=f"horizon = {steps}")).results
+    for s, exact in (("left", Q(1, 10)), ("right", Q(3, 20))):
+        close(r, s, exact)
+    gain = {2: Q(1, 6), 3: Q(1, 12)}[steps]  # of left, right, left: 1/4 1/3
+    assert Q(r["gain"]["lower"]) <= gain <= Q(r["gain"]["upper"]) <= gain * (1 + Q(1, 10**9))
+    assert verdicts(r) == ["proved", "proved"]
+
+
+def test_more_steps_together_come_nearer_the_exact_sums() -> None:
+    """Turned alternately, what one step allows for in every direction is not there eight steps later."""
+    maps, size, more = matrices(3), np.array([0.02, 0.01]), ""
+    for name, other in (("left", "right"), ("right", "left")):
+        (a, b), (c, d) = maps[name]
+        more += (
+            f'[stance.{name}]\nthen = "{other}"\nstate = {{ x = [-3, 3], v = [-3, 3] }}\ntarget = {{ x = 0, v = 0 }}\n'
+        )
+        more += f'next = {{ x = "{a}*x + {b}*v + d", v = "{c}*x + {d}*v + e" }}\n'
+    found = {}
+    for steps in (1, 6):
+        r = proved(TWO.format(top=f"horizon = {steps}\n[effort]\ngap = 0.02", more=more, x=9, v=9)).results
+        found[steps] = {(s, x): span(r, s, x)[1] for s in maps for x in ("x", "v")}
+    for name in maps:
+        order = [maps["left"], maps["right"]] if name == "right" else [maps["right"], maps["left"]]
+        total, power = np.zeros(2), np.eye(2)
+        for n in range(400):
+            total, power = total + np.abs(power) @ size, power @ order[n % 2]
+        for x, exact in zip(("x", "v"), total, strict=True):
+            near, far = (float(found[steps][name, x]) for steps in (6, 1))
+            assert exact * (1 - 1e-12) <= near <= far and near <= 1.4 * exact, (name, x, exact, near, far)
+    assert any(float(found[6][key]) < 0.8 * float(found[1][key]) for key in found[1])
+
+
+def test_targets_move_on_the_way_of_several_steps() -> None:
+    """x* = c and −2c, c moving by up to 1/100 a step: simulated courses stay within what two steps prove of each stance."""
+    rest = "c = { range = [0, 0.2], held = true, change = 0.01 }\nw = [-1, 1]"
+    stances = {
+        "left": ("right left", "[-2, 2]", "c", "-2*c + (x - c)/2 + w/50"),
+        "right": ("left", "[-2, 2]", "-2*c", "c + (x + 2*c)/4 + sin(x)/40"),
+    }
+    r = proved(graph(stances, "settles", top="horizon = 2\n[effort]\ngap = 0.02", rest=rest)).results
+    assert verdicts(r) == ["proved"]
+    rng, then = np.random.default_rng(0), {"left": ["right", "left"], "right": ["left"]}
+    x, c, stance, drift = np.zeros(200), rng.uniform(0, 0.2, 200), "left", rng.choice([-1, 1], 200)
+    upper = {s: float(span(r, s)[1]) for s in stances}
+    for k in range(400):
+        if k % 20 == 0:
+            drift, push = rng.choice([-1, 1], 200), rng.choice([-1, 1], 200)
+        x = -2 * c + (x - c) / 2 + push / 50 if stance == "left" else c + (x + 2 * c) / 4 + np.sin(x) / 40
+        stance = then[stance][int(rng.integers(len(then[stance])))]
+        c = np.clip(c + drift / 100, 0, 0.2)
+        if k > 60:
+            error = np.abs(x - (c if stance == "left" else -2 * c)).max()
+            assert error <= upper[stance] * (1 + 1e-9), (k, stance, error)
+
+
+@pytest.mark.parametrize("text, said", [
+    ("horizon = 6", "more than 64 ways"), ('horizon = 2\n[dynamics]\nduration = 1\n[dynamics.start]\nX = "x"\n[dynamics.rate]\nX = "0*X"', "closed form"),
+])  # fmt: skip
+def test_what_cannot_be_taken_together_is_said_in_one_line(text: str, said: str) -> None:
+    stances = dict.fromkeys(("a", "b"), ("a b", "[-1, 1]", "0", "x/2"))
+    with pytest.raises(ClaimError) as caught:
+        proved(graph(stances, top=text))
+    line = str(caught.value)
+    assert line.startswith("claim.toml: horizon: ") and said in line and "\n" not in line
+
+
+def test_what_stays_open_with_a_horizon() -> None:
+    stances = {s: (t, "[-1, 1]", "0", "x/2 + w/10") for s, t in (("a", "b"), ("b", "a"))}
+    r = proved(graph(stances, "steps(x, 0.9, 0.3) <= 9", "settles", top="horizon = 2")).results
+    assert verdicts(r) == ["undecided", "proved"] and "not counted yet" in r["requirements"][0]["limited_by"]

@@ -152,7 +152,9 @@ def _of_stances(found: Accepted) -> list[Block]:
                 items.append((f"in the {name} stance ", equation(inner, "≤", figure(b)), f" {stance.states[s].unit}."))
     if not items:
         return [*blocks, said("No bound in the long run is proved.")]
-    cycles = said("Gains multiplied around every cycle of allowed steps are below 1.")
+    many = claim.horizon
+    whose = f"Gains of {many} steps taken together, " if many > 1 else "Gains "
+    cycles = said(f"{whose}multiplied around every cycle of allowed steps{',' if many > 1 else ''} are below 1.")
     return [*blocks, said("In the long run"), Items(tuple(items)), cycles]
 
 
