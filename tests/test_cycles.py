@@ -191,9 +191,9 @@ def test_targets_move_on_the_way_of_several_steps() -> None:
     rest = "c = { range = [0, 0.2], held = true, change = 0.01 }\nw = [-1, 1]"
     stances = {
         "left": ("right left", "[-2, 2]", "c", "-2*c + (x - c)/2 + w/50"),
-        "right": ("left", "[-2, 2]", "-2*c", "c + (x + 2*c)/4 + sin(x)/40"),
+        "right": ("left", "[-2, 2]", "-2*c", "c + (x + 2*c)/4 + w*x/40"),
     }
-    r = proved(graph(stances, "settles", top="horizon = 2\n[effort]\ngap = 0.02", rest=rest)).results
+    r = proved(graph(stances, "settles", top="horizon = 2\n[effort]\ncells = 300", rest=rest)).results
     assert verdicts(r) == ["proved"]
     rng, then = np.random.default_rng(0), {"left": ["right", "left"], "right": ["left"]}
     x, c, stance, drift = np.zeros(200), rng.uniform(0, 0.2, 200), "left", rng.choice([-1, 1], 200)
@@ -201,7 +201,7 @@ def test_targets_move_on_the_way_of_several_steps() -> None:
     for k in range(400):
         if k % 20 == 0:
             drift, push = rng.choice([-1, 1], 200), rng.choice([-1, 1], 200)
-        x = -2 * c + (x - c) / 2 + push / 50 if stance == "left" else c + (x + 2 * c) / 4 + np.sin(x) / 40
+        x = -2 * c + (x - c) / 2 + push / 50 if stance == "left" else c + (x + 2 * c) / 4 + push * x / 40
         stance = then[stance][int(rng.integers(len(then[stance])))]
         c = np.clip(c + drift / 100, 0, 0.2)
         if k > 60:
