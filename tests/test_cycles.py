@@ -224,3 +224,15 @@ def test_what_stays_open_with_a_horizon() -> None:
     stances = {s: (t, "[-1, 1]", "0", "x/2 + w/10") for s, t in (("a", "b"), ("b", "a"))}
     r = proved(graph(stances, "steps(x, 0.9, 0.3) <= 9", "settles", top="horizon = 2")).results
     assert verdicts(r) == ["undecided", "proved"] and "not counted yet" in r["requirements"][0]["limited_by"]
+
+
+@pytest.mark.parametrize("top", ["", "horizon = 2"])
+def test_ranges_of_a_requirement_have_orbits_of_their_own(top: str) -> None:
+    """w twice as large: a bound of 3/10 on the right, which is not that of the claim's own range."""
+    names = ["left", "right"]
+    stances = {s: (names[1 - k], "[-8, 8]", "0", step) for k, (s, step) in enumerate(WALKED.items())}
+    asked = [f'"bound(x) {c}"\nover = {{ w = [-2, 2] }}' for c in ("< 0.29", "<= 0.31")]
+    r = proved(graph(stances, "bound(x) < 0.16", *asked, top=top)).results
+    assert verdicts(r) == ["proved", "refuted", "proved"]
+    assert abs(Q(r["requirements"][1]["value"]["lower"]) - Q(3, 10)) <= Q(1, 10**9)
+    assert "takes x as far as 0.3 in right" in r["requirements"][1]["limited_by"]
