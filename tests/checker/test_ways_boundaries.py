@@ -13,7 +13,7 @@ import pytest
 
 import ultibound.checker
 from tests.checker.test_boundaries import STEP, Entries, Questions, but, refuses
-from tests.checker.test_graph_boundaries import Steps, balls, claim, hair, regions
+from tests.checker.test_graph_boundaries import NORMS, Steps, balls, claim, hair, regions, two
 
 CASES = Questions()
 unit, accept, reject = CASES.unit, CASES.accept, CASES.reject
@@ -168,6 +168,23 @@ def moving() -> None:
         reject(f"a target that moves on the way, the other's move {residual}", but(entries, f"proof {line - 1} uses", [*uses[:2], moves[0] if uses[2] == moves[1] else moves[1]]), f"proof line {line}", "lines about")
 
 
+def in_two_norms() -> None:
+    """Two states, seen in the norms of the first and the last stance of each way, whatever lies between."""
+    d = two(["gain <= 1/2", "gain < 1/2", '"bound(x) <= 7/16"\nin = "left"'], top="horizon = 2")
+    del d.proof[15:]
+    pairs = []
+    for way, norm, residual in ((LRL, 1, "7/32"), (RLR, 8, "33/64")):
+        pairs.append(d.theorem("slope", f"{way}:slope", [d.matrix(f"{way}:slopes", "1/2", [15, norm]), d.matrix(f"{way}:misses", residual, [15, norm])], gain="1/2", residual=residual))
+    b = {"left": "7/16", "right": "33/32"}
+    d.bound([15, *pairs], {"left": "1", "right": "1"}, b, **b)
+    entries = d.found("region", [("gain <= 1/2", "proved"), ("gain < 1/2", "undecided"), ('"bound(x) <= 7/16"\nin = "left"', "proved")], NORMS, "xy")
+    entries["results"]["routes"] = {"slope": {"gain": None, "residual": None, "bound": None}}
+    judged("in two norms", entries)
+    for line in (16, 17, 19, 20):
+        reject(f"in two norms: {line} a hair less", but(entries, f"proof {line - 1} concludes norm", hair(entries["proof"][line - 1]["concludes"]["norm"], -1)), f"proof line {line}", "a leaf is not shown")
+        reject(f"in two norms: {line} in the other", but(entries, f"proof {line - 1} uses", [15, 8 if line < 18 else 1]), f"proof line {line}", "the metric of the next")
+
+
 def round_and_round() -> None:
     """An orbit of several states counts whole horizons, and shows what is at their ends; a product is one of single steps."""
     d = twice(["bound(x) < 7/20", '"bound(x) < 3/20"\nin = "left"'])
@@ -240,6 +257,7 @@ two_steps()
 more_ways()
 on_balls()
 moving()
+in_two_norms()
 round_and_round()
 
 
