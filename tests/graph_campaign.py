@@ -1,6 +1,6 @@
 """Random claims of two and three stances, and trajectories steered against what is proved of them.
 
-`python -m tests.graph_campaign [COUNT]` prints the table of the campaign; tests/test_graph_soundness.py runs it small.
+`python -m tests.graph_campaign [COUNT [HORIZON]]` prints the table of the campaign; tests/test_graph_soundness.py runs it small.
 """
 
 from __future__ import annotations
@@ -45,16 +45,19 @@ class Tally:
     refused: int = 0
     walked: int = 0
     nearest: list[float] = field(default_factory=list)
+    reached: list[float] = field(default_factory=list)
 
     def table(self) -> str:
         near = f"{np.median(self.nearest):.2f}, at most {max(self.nearest):.2f}" if self.nearest else "none"
+        orbits = f"{np.median(self.reached):.2f}, at least {min(self.reached):.2f}" if self.reached else "none"
         return (
             f"claims {self.claims}, bounded {self.bounded}, contracting by simulation {self.contracting}, refused {self.refused}, "
-            f"steps {self.walked}\nlargest error in the long run over its proved bound: median {near}"
+            f"steps {self.walked}\nlargest error in the long run over its proved bound: median {near}\n"
+            f"what proved orbits reach over the proved bound: median {orbits}"
         )
 
 
-def drawn(seed: int) -> Case:
+def drawn(seed: int, horizon: int = 1) -> Case:
     """One to three states, two or three stances, any order; a third of the claims with a target that moves."""
     rng = random.Random(seed)
     n, shape = 1 + seed % 3, SHAPES[seed // 3 % 3]
@@ -72,9 +75,9 @@ def drawn(seed: int) -> Case:
         bend[s], wide[s] = round(rng.uniform(-0.2, 0.2), 2), [round(rng.uniform(1.2, 2.5), 1) for _ in states]
     follow = {s: aim[then[s][0]] for s in names}
     apart, named = random.Random(seed + 10**6), [f"f{i}" for i in range(n)]  # half of them told apart from a correction
-    told = apart.sample(named, apart.randint(1, n)) if apart.random() < 0.5 else []
+    told = apart.sample(named, apart.randint(1, n)) if apart.random() < 0.5 and horizon == 1 else []
     turned = {s: [x for x in states if apart.random() < 0.4] if told else [] for s in names}
-    top = f"format = 1\nshrink = {rng.choice(['true', 'false'])}\n"
+    top = f"format = 1\nhorizon = {horizon}\nshrink = {rng.choice(['true', 'false'])}\n"
     top += f"correction = {told!r}\nroute = {apart.choice(['best', 'best', 'best', 'split'])!r}\n" if told else ""
     kind = rng.choice(["auto", "auto", "box", "polytope", "ellipsoid"])
     top += f'[metric]\nkind = "{kind}"\n' if n > 1 else ""
@@ -162,9 +165,9 @@ def values(rng: np.random.Generator, count: int) -> Any:
     return np.where(rng.random((count, 3)) < 0.8, np.where(rng.random((count, 3)) < 0.5, low, high), x)
 
 
-def run(seed: int, tally: Tally) -> None:
+def run(seed: int, tally: Tally, horizon: int = 1) -> None:
     """Proves a claim and looks for a trajectory, a point or a count of steps that goes beyond what is proved."""
-    case, rng = drawn(seed), np.random.default_rng(seed)
+    case, rng = drawn(seed, horizon), np.random.default_rng(seed)
     tally.claims += 1
     try:
         r = proved(case.text).results
@@ -176,9 +179,13 @@ def run(seed: int, tally: Tally) -> None:
     if r["set"] is None:
         return
     bounds = {s: [x["bound"] for x in one["states"].values()] for s, one in r["stances"].items()}
-    if any(b is None for several in bounds.values() for b in several):
+    if any(b is None or b["upper"] is None for several in bounds.values() for b in several):
         return
     tally.bounded += 1
+    for b in (b for several in bounds.values() for b in several if float(Fraction(b["upper"])) > 0):
+        low = Fraction(b["lower"] or 0)
+        assert low <= Fraction(b["upper"]), (seed, b)
+        tally.reached.append(float(low / Fraction(b["upper"])))
     for s, errors in far.items():
         for e, b in zip(errors, bounds[s], strict=True):
             assert e <= float(Fraction(b["upper"])) * (1 + ROUND) + 1e-6, (seed, s, e, b)
@@ -277,5 +284,5 @@ def ranges(case: Case, r: dict[str, Any], stance: str, after: Any) -> None:
 if __name__ == "__main__":
     total = Tally()
     for number in range(int(sys.argv[1]) if len(sys.argv) > 1 else 60):
-        run(number, total)
+        run(number, total, int(sys.argv[2]) if len(sys.argv) > 2 else 1)
     print(total.table())

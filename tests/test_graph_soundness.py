@@ -24,6 +24,12 @@ def test_nothing_simulated_goes_beyond_what_is_proved(first: int, tally: Tally) 
         run(seed, tally)
 
 
+@pytest.mark.parametrize("seed", range(2, 180, 7) if LONG else (3,))
+def test_nor_with_several_steps_taken_together(seed: int) -> None:
+    """Two and three steps: every bound holds at every step, not at the ends of horizons alone."""
+    run(seed, Tally(), 2 + seed % 2)
+
+
 def test_most_claims_that_contract_get_bounds(tally: Tally, record_property: Callable[[str, str], None]) -> None:
     """At least three in five of the claims that simulation shows to contract."""
     record_property("table", tally.table())

@@ -16,6 +16,7 @@ from tests.checker import (
     test_absorbed_boundaries,
     test_attracting_boundaries,
     test_boundaries,
+    test_cycle_boundaries,
     test_gains_boundaries,
     test_graph_boundaries,
     test_horizon_boundaries,
@@ -28,6 +29,7 @@ from tests.checker import (
     test_several_boundaries,
     test_squares_boundaries,
     test_stance_boundaries,
+    test_ways_boundaries,
 )
 from tests.mutants import EQUIVALENT, Battery, Copies, Mutant, campaign, mutants, table
 
@@ -53,7 +55,7 @@ PROOFS = (
 STANCES = ("calculus", "motion", "pushes", "signals", "models", "rates", "flows")
 NORMS = ("matrices", "inequality")
 SEVERAL = ("jacobians", "several", "outcomes", "periodic", "products", "absorbed", "attracting")
-GRAPHS = ("graph", "graph_outcomes")
+GRAPHS = ("graph", "graph_outcomes", "cycles", "cycle_outcomes")
 SQUARES = ("squares", "polynomials")
 GAINS = ("gains",)
 READING = ("grammar", "numerals", "statement", "tables", "scope", "command")
@@ -90,7 +92,9 @@ def batteries(copies: Copies) -> dict[str, Battery]:
     )
     several = Battery(test_several_boundaries.CASES | orbits | horizon_cases | pushes_cases | squares_cases)
     stance_cases = {f"stance: {n}": q for n, q in test_stance_boundaries.CASES.items()}
-    graphs = Battery(test_graph_boundaries.CASES | pushes_cases)
+    graphs = Battery(
+        test_graph_boundaries.CASES | test_cycle_boundaries.CASES | test_ways_boundaries.CASES | pushes_cases
+    )
     several_cases = {f"several: {n}": q for n, q in test_several_boundaries.CASES.items()}
     graph_cases = {f"graph: {n}": q for n, q in test_graph_boundaries.CASES.items()}
     gain_cases = {f"gains: {n}": q for n, q in test_gains_boundaries.CASES.items()}

@@ -111,6 +111,7 @@ SEVERAL["corrections"] = (
     .replace("format = 1", 'format = 1\ncorrection = ["f"]\n[define]\nf = "a*b/9"')
     .replace('a = "a/2 + u/9"', 'a = "a/2 + u*f/9"')
 )
+GRAPHS += [Case(f"{n} steps: moving targets", f"horizon = {n}\n{MOVING}", True) for n in (2, 3)]
 for several in SEVERAL:
     table = {"t.csv": "p,q,u\n0,0,1\n0,1,2\n0.5,0,2\n0.5,1,2\n1,0,1\n1,1,3\n"} if "t.csv" in SEVERAL[several] else {}
     PROVABLE.append(Case(f"several: {several}", SEVERAL[several], True, table))
@@ -291,11 +292,16 @@ def test_both_lists_mean_the_same_between_stances(case: Case, ball: bool) -> Non
         for t in stance.then:
             after = next(s for s in claim.stances if s.name == t)
             step = g.between[f"{stance.name}>{t}"]
-            listed += [(step, o.miss(s, 0, after)) for s in o.states]
+            listed += [(step, o.miss(s, 0, [after])) for s in o.states]
             if claim.correction:
                 listed += [(step, o.split_slope(mine, s, x)) for s in o.states for x in o.states]
                 onto = o.stance if t == stance.name else after
                 listed += [(step, o.split_residual(mine, s, onto)) for s in o.states]
+        each = {s.name: s for s in claim.stances}
+        for way in [w for w in g.walks if w[0] == stance.name and len(w) > 2]:
+            along, via = g.along[">".join(way)], [each[s] for s in way[1:]]
+            listed += [(along, o.miss(s, 0, via)) for s in o.states]
+            listed += [(along, o.slope(mine, s, x, 0, via)) for s in o.states for x in o.states]
         gates = [(x.op, x.args, x.value if x.op in ("number", "power") else x.name or None) for x in o.graph.gates]
         for derivation, obligation in listed:
             meaning = derivation.meaning(obligation.name, theirs)

@@ -1,4 +1,4 @@
-(** Several steps: proofs/horizon.md, proofs/orbit.md, proofs/several.md (7), proofs/attained.md. *)
+(** Several steps: proofs/horizon.md, proofs/orbit.md, proofs/several.md (7), proofs/graph.md (9), proofs/attained.md. *)
 Require Import Reals Lra Lia.
 From Coquelicot Require Import Coquelicot.
 From Ultibound Require Import Bound Mean Vectors Norms Comparison Sets.
@@ -342,4 +342,32 @@ Proof.
   destruct T as [->| ->]; [now apply largest_ge|].
   rewrite <- sqrt_Rsqr_abs. unfold euclidean. apply sqrt_le_1_alt. unfold Rsqr.
   apply (sum_term n (fun i => y i * y i) i Hi). intros; nra.
+Qed.
+
+Lemma gains_nonnegative k m : (forall j, 0 <= k j) -> 0 <= gains k m.
+Proof. intro K. induction m; cbn; [lra|now apply Rmult_le_pos]. Qed.
+
+Lemma chain_through_stances n m0 len (v : nat -> matrix) js k m : (forall j, 0 <= k j) -> supported m0 len ->
+  (forall j e, norm n len (v (S j)) (times n (js j) e) <= k j * norm n len (v j) e) ->
+  forall e, norm n len (v m) (times n (chain n js m) e) <= gains k m * norm n len (v O) e.
+Proof.
+  intros Hk S K e. induction m as [|m IH].
+  - cbn [gains]. rewrite Rmult_1_l. right. unfold norm. apply (supported_ext m0); trivial. intros i _.
+    apply times_ext. intros j Hj. unfold times; cbn. rewrite (sum_single n _ j Hj).
+    + rewrite Nat.eqb_refl. ring.
+    + intros q _ N. apply not_eq_sym, Nat.eqb_neq in N. rewrite N. ring.
+  - cbn [chain gains]. apply Rle_trans with (norm n len (v (Datatypes.S m)) (times n (js m) (times n (chain n js m) e))).
+    + right. unfold norm. apply (supported_ext m0); trivial. intros i _. apply times_ext. intros j _. symmetry. apply times_times.
+    + eapply Rle_trans; [apply K|]. rewrite Rmult_assoc. now apply Rmult_le_compat_l.
+Qed.
+
+(* Stances (9), V square: Jacobians with gains k_j >= 0 from the norm of each stance to that of the next, back to the first one's: n (k_1 ⋯ k_m)ᵖ >= |tr (J_m ⋯ J_1)ᵖ|. *)
+Theorem trace_around_a_walk (n : nat) (len : vector -> R) (l : matrix) (v js : nat -> matrix) (k : nat -> R) (m p : nat) :
+  len = largest n \/ len = euclidean n -> left_inverse n n l (v O) -> left_inverse n n (v O) l -> v m = v O -> (forall j, 0 <= k j) ->
+  (forall j e, norm n len (v (S j)) (times n (js j) e) <= k j * norm n len (v j) e) ->
+  Rabs (trace n (chain n (fun _ => chain n js m) p)) <= INR n * gains k m ^ p.
+Proof.
+  intros T E E' Back Hk K. apply (trace_of_a_product n len l (v O)); trivial; [now apply gains_nonnegative|].
+  intros _ e. rewrite <- Back at 1. apply (chain_through_stances n n); trivial.
+  destruct T as [->| ->]; [apply largest_supported|apply euclidean_supported].
 Qed.

@@ -1,4 +1,4 @@
-(** What several states are pushed by, end up in, and come back to: proofs/several.md (4), (5), (6), (8), proofs/graph.md (5), (7). *)
+(** What several states are pushed by, end up in, and come back to: proofs/several.md (4), (5), (6), (8), proofs/graph.md (5), (7), (8). *)
 Require Import Reals Lra Lia FunctionalExtensionality.
 From Coquelicot Require Import Coquelicot.
 From Ultibound Require Import Bound Mean Vectors Norms Comparison Several.
@@ -224,6 +224,18 @@ Proof.
   intros Hk K Con y z Cy Cz.
   assert (In : forall q x, c x -> c (round g q x)) by (induction q; cbn; auto).
   split; [now apply In|]. induction p as [|p IH]; cbn [round pow]; [lra|].
+  eapply Rle_trans; [apply Con; now apply In|]. rewrite Rmult_assoc. now apply Rmult_le_compat_l.
+Qed.
+
+(* Stances (8): maps that lead from the set of each stance into that of the next, with gains k_j >= 0 from norm to norm: p of them contract by k_1 ⋯ k_p. *)
+Theorem round_through_stances (nm : nat -> vector -> R) (c : nat -> vector -> Prop) (g : nat -> vector -> vector) (k : nat -> R) (p : nat) :
+  (forall j, 0 <= k j) -> (forall j y, c j y -> c (S j) (g j y)) ->
+  (forall j y z, c j y -> c j z -> nm (S j) (subtract (g j y) (g j z)) <= k j * nm j (subtract y z)) ->
+  forall y z, c O y -> c O z -> c p (round g p y) /\ nm p (subtract (round g p y) (round g p z)) <= gains k p * nm O (subtract y z).
+Proof.
+  intros Hk K Con y z Cy Cz.
+  assert (In : forall q x, c O x -> c q (round g q x)) by (induction q; cbn; auto).
+  split; [now apply In|]. induction p as [|p IH]; cbn [round gains]; [lra|].
   eapply Rle_trans; [apply Con; now apply In|]. rewrite Rmult_assoc. now apply Rmult_le_compat_l.
 Qed.
 

@@ -8,6 +8,7 @@ Definition vector := nat -> R.
 Definition matrix := nat -> nat -> R.
 
 Fixpoint sum (n : nat) (f : nat -> R) : R := match n with O => 0 | S n => sum n f + f n end.
+Fixpoint gains (k : nat -> R) (n : nat) : R := match n with O => 1 | S n => k n * gains k n end.
 
 Definition times (n : nat) (a : matrix) (x : vector) : vector := fun i => sum n (fun j => a i j * x j).
 Definition product (n : nat) (a b : matrix) : matrix := fun i j => sum n (fun k => a i k * b k j).

@@ -239,9 +239,10 @@ def what_is_kept() -> None:
         reject(f"no basis {end}", but(good, f"proof 18 witness {end}", bad), "proof line 19", "the inverse times the matrix is not 1")
         reject(f"a basis {end} without rows", but(good, f"proof 18 witness {end} rows", GONE), "proof line 19", "rows and inverse")
         reject(f"entries in another basis {end}", but(good, f"proof 18 witness {end}", {"rows": [["2"]], "inverse": [["1/2"]]}, "proof 18 concludes 1,1", "3"), "proof line 23", "different bases")
-    wrong = regions(top='route = "sector"\ncorrection = ["f"]\n[define]\nf = "x"').found("region", [("settles", "proved")])
-    reject("another route", wrong, "claim", "only the routes slope and split")
-    reject("a horizon", regions(top="horizon = 2").found("region", [("settles", "proved")]), "claim", "only the routes slope and split over one step")
+    for top, said in (('route = "sector"', "only the routes slope and split"), ('horizon = 2\nroute = "split"', "split between stances can be checked over one step only")):
+        wrong = regions(top=f'{top}\ncorrection = ["f"]\n[define]\nf = "x"').found("region", [("settles", "proved")])
+        reject(f"another route, {top[:9]}", wrong, "claim", said)
+    reject("a horizon", regions(top="horizon = 2").found("region", [("settles", "proved")]), "proof line 18", "lines about left>right>left, right>left>right")
 
 
 # balls: R = 1 and 3/4; 3/8 x + p leads from 1 to 3/8 + 3/8 about 1/4, x/2 + q from 3/4 to 9/16 about 0
@@ -596,9 +597,8 @@ def without(entries: Entries, *lines: int) -> Entries:
 STILL = {"cuts": {}, "pieces": ["0", "1"], "degrees": [1, 0], "bits": 24, "cells": [["16777216 0"]]}
 
 
-def of_the_ground() -> None:
-    """The same regions, x standing still for a second on either foot."""
-    plain = regions().found("region", [("settles", "proved")])
+def grounded(plain: Entries) -> Entries:
+    """The same regions, x standing still for a second on either foot: the flows are lines 1 and 2, the sets that are kept line 13."""
     text = plain["claim"]["text"].replace("3*x/2 + p", "3*X/2 + p").replace("x/4 + q", "X/4 + q")
     text = text.replace("[stance.left]", '[dynamics]\nduration = 1\n[dynamics.start]\nX = "x"\n[dynamics.rate]\nX = "0*X"\n[stance.left]')
     proof = [{"rule": "trajectory", "proves": f"{s}:flow", "uses": [], "witness": STILL, "concludes": {"error": "0"}} for s in ("left", "right")]
@@ -610,11 +610,16 @@ def of_the_ground() -> None:
         proof.append({**line, "uses": [n + 2 for n in line["uses"]] + flow, "witness": witness})
     for s in ("left", "right"):
         proof.append({"rule": "range", "proves": f"{s}:support[1]", "uses": [13], "witness": {"bits": 0, "trees": ["d"]}, "concludes": {"lower": "1", "upper": "1"}})
-    good = but(plain, "claim text", text, "proof", proof)
+    return but(plain, "claim text", text, "proof", proof)
+
+
+def of_the_ground() -> None:
+    good = grounded(regions().found("region", [("settles", "proved")]))
+    proof = good["proof"]
     judged("on the ground", good)
     exact("on the ground", good, {"gain": ("3/2", "3/2"), "residual": ("1/8", "1/8"), "stances left states x bound": (None, "3/20")})
     for n, line in enumerate(proof, 1):
-        part, _, name = line["proves"].rpartition(":")
+        _, _, name = line["proves"].rpartition(":")
         if name.startswith(("image", "slopes", "misses")):
             other = 2 if line["uses"][-1] == 1 else 1
             reject(f"the flow of another stance, {n}", but(good, f"proof {n - 1} uses", [*line["uses"][:-1], other]), f"proof line {n}", "lines about" if "image" in name else "uses: the set of the stance")
@@ -757,7 +762,7 @@ def signals_that_follow_a_state(checker: Any) -> None:
     for lines, loose, upper in (({2: line}, {"split": False}, Q(1, 2)), ({2: line}, {"split": True}, None), ({}, {}, None)):
         derivation, proof = SimpleNamespace(loose=loose.__getitem__), SimpleNamespace(lines=lines)
         before = SimpleNamespace(part="a", domain=None, lasting=True, derivation=derivation, proof=proof, variant=checker.theorems.OWN)
-        step = checker.graph_outcomes.StepResults(before, SimpleNamespace(part="b", metric=None), "split")
+        step = checker.graph_outcomes.StepResults("a>b", before, SimpleNamespace(part="b", metric=None), "split")
         assert (step.gain.upper, step.shown) == (upper, (Q(1, 2), Q(1)) if lines else None)
 
 

@@ -16,7 +16,7 @@ from ..checker.theorems import Variant
 from .lines import Writer, upward
 from .norms import NormWriter, solved, texts
 
-Step = tuple[str, str]
+Step = tuple[str, ...]  # from a stance to the next, or a way of several steps
 Basis = tuple[Matrix, Matrix]
 ROUNDS = 60  # of choosing, for each stance, the step before it that asks for most
 LARGEST = 40  # rows of all bases together, up to which a comparison is solved exactly
@@ -31,11 +31,11 @@ class StanceWriter(NormWriter):
 
 
 class StepWriter(StanceWriter):
-    """Lines about the step from a stance to the one that follows."""
+    """Lines about the step from a stance to the one that follows, or about several."""
 
-    def __init__(self, before: StanceWriter, after: StanceWriter, norm: int) -> None:
-        """`norm`: the line of the metric of the stance that follows."""
-        super().__init__(before.proof, before.raw, f"{before.part}>{after.part}")
+    def __init__(self, before: StanceWriter, part: str, norm: int) -> None:
+        """`norm`: the line of the metric of the stance that follows last."""
+        super().__init__(before.proof, before.raw, part)
         self.flow, self.norm = before.flow, norm
 
     def rests(self, proves: str, on: int) -> list[int]:
@@ -85,7 +85,7 @@ class GraphWriter(StanceWriter):
         """The bound by a route in the norm of each stance; None where the steps do not contract together."""
         pairs = {e: self.proof.lines[n].concludes for e, n in steps.items()}
         k = {e: ((x["gain"],),) for e, x in pairs.items()}
-        p = least_above(k, {e: [Fraction(1)] for e in k})
+        p = least_above(k, {e: [Fraction(1)] for e in k}, 1)
         b = least_above(k, {e: [x["residual"]] for e, x in pairs.items()})
         if p is None or b is None:
             return None
@@ -106,17 +106,18 @@ class GraphWriter(StanceWriter):
             far[name] = moved(d, [lines[next(waiting)] for _ in movements(d)])
         k: dict[Step, Matrix] = {}
         residual: dict[Step, list[Fraction]] = {}
-        for (s, t), (slopes, misses) in tables.items():
+        for e, (slopes, misses) in tables.items():
+            s, t = e[0], e[-1]
             rows, m = bases[t][0], range(1, len(bases[s][0]) + 1)
             entries, missed = lines[slopes].concludes, lines[misses].concludes
-            k[s, t] = tuple(tuple(entries[f"{i},{j}"] for j in m) for i in range(1, len(rows) + 1))
-            residual[s, t] = [
+            k[e] = tuple(tuple(entries[f"{i},{j}"] for j in m) for i in range(1, len(rows) + 1))
+            residual[e] = [
                 missed[f"{i},1"] + sum((abs(x) * y for x, y in zip(row, far[t], strict=True)), Fraction(0))
                 for i, row in enumerate(rows, 1)
             ]
         if sum(len(rows) for rows, _ in bases.values()) > LARGEST:
             return None
-        p = least_above(k, {e: [Fraction(1)] * len(x) for e, x in residual.items()})
+        p = least_above(k, {e: [Fraction(1)] * len(x) for e, x in residual.items()}, 1)
         b = least_above(k, residual)
         if p is None or b is None:
             return None
@@ -141,38 +142,40 @@ class GraphWriter(StanceWriter):
 
 
 def least_above(
-    k: Mapping[Step, Matrix], residual: Mapping[Step, Sequence[Fraction]]
+    k: Mapping[Step, Matrix], residual: Mapping[Step, Sequence[Fraction]], least: int = 0
 ) -> dict[str, list[Fraction]] | None:
     """The least b >= 0 with K b + residual <= b of the next on every step, exactly; None where there is none.
 
-    Policies: each row of b is met with equality by one step, the one that asked for most so far (Howard 1960).
+    `least`: b of stances that no step leads to. Policies: each row of b is met with equality by one step, the one that
+    asked for most so far (Howard 1960).
     """
-    size = {s: len(x[0]) for (s, _), x in k.items()}
+    size = {s: len(x[0]) for (s, *_), x in k.items()}
     rank = {(s, i): n for n, (s, i) in enumerate((s, i) for s, m in size.items() for i in range(m))}
     chosen: dict[tuple[str, int], Step] = {}
     for step in k:
-        for i in range(size[step[1]]):
-            chosen.setdefault((step[1], i), step)
+        for i in range(size[step[-1]]):
+            chosen.setdefault((step[-1], i), step)
     b = [Fraction(0)] * len(rank)
     for _ in range(ROUNDS):
         table = [[Fraction(0)] * len(rank) for _ in rank]
-        right = [Fraction(0)] * len(rank)
-        for (t, i), (s, _) in chosen.items():
-            for j, x in enumerate(k[s, t][i]):
-                table[rank[t, i]][rank[s, j]] = x
-            right[rank[t, i]] = residual[s, t][i]
+        right = [Fraction(least)] * len(rank)
+        for (t, i), step in chosen.items():
+            for j, x in enumerate(k[step][i]):
+                table[rank[t, i]][rank[step[0], j]] = x
+            right[rank[t, i]] = residual[step][i]
         (found,) = solved(tuple(map(tuple, table)), right)
         if found is None or min(found) < 0:
             return None
         b, better = found, False
-        for (s, t), rows in k.items():
+        for step, rows in k.items():
+            s, t = step[0], step[-1]
             for i, row in enumerate(rows):
-                asked = sum((x * b[rank[s, j]] for j, x in enumerate(row)), residual[s, t][i])
-                if asked > b[rank[t, i]] and chosen[t, i] != (s, t):
-                    now = chosen[t, i][0]
-                    held = sum((x * b[rank[now, j]] for j, x in enumerate(k[now, t][i])), residual[now, t][i])
+                asked = sum((x * b[rank[s, j]] for j, x in enumerate(row)), residual[step][i])
+                now = chosen[t, i]
+                if asked > b[rank[t, i]] and now != step:
+                    held = sum((x * b[rank[now[0], j]] for j, x in enumerate(k[now][i])), residual[now][i])
                     if asked > held:
-                        chosen[t, i], better = (s, t), True
+                        chosen[t, i], better = step, True
         if not better:
             return {s: [b[rank[s, i]] for i in range(m)] for s, m in size.items()}
     return None

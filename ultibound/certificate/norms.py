@@ -101,7 +101,7 @@ class NormWriter(Writer):
             for v in d.meaning(name, domain).variables:
                 cells = max(cells, len(v.cells))
         few = cells <= RATIONAL_CELLS and len(below) <= RATIONAL_TERMS
-        long = d.statement.horizon > 1 and any(growing(d.terms, k) for k in below)
+        long = (d.statement.horizon > 1 or len(d.via) > 0) and any(growing(d.terms, k) for k in below)
         return few and not long and not any(d.terms.all[k][0] in IRRATIONAL for k in below)
 
     def matrix_seconds(self, proves: str, bits: int, on: int) -> float:
@@ -228,7 +228,7 @@ class NormWriter(Writer):
             raise ValueError("no set")
         table = Table(self.derivation, proves, domain, bits, self.flows())
         at = [{v.name: spelled(v, p[v.name]) for v in table.variables} for p in points]
-        lower = root_of(traced(table, at, power) / len(self.derivation.states), power * len(at))
+        lower = root_of(traced([table.at(x) for x in at], power) / len(self.derivation.states), power * len(at))
         if not lower >= wanted:
             return
         uses = [on, *([self.flow] if self.flow is not None and self._moves(proves, on) else [])]

@@ -6,11 +6,14 @@ from collections.abc import Mapping
 from dataclasses import dataclass
 
 from ..checker.results import Outcome, Results
+from ..checker.theorems import Line, Variant
 from ..claim import Claim
 from ..claim.constants import constant
 from ..claim.model import Requirement
 from ..claim.obligations import RANGED, Obligations
 from .remarks import STOPS
+
+MOST_NAMED = 6  # stances of a walk
 
 
 @dataclass(frozen=True)
@@ -43,7 +46,33 @@ class StanceRemarks:
             names = own if r.kind in RANGED else [n for n in self.limits if ":require" not in n]
             parts += [f"{n}: {STOPS.get(x, x)}" for n in names if (x := self.limits.get(n, ""))]
             parts.append("interrupted" if self.interrupted else self.why(r))
+        if outcome.verdict == "refuted":
+            parts.append(self.shown(r, asked, Variant(0, number if r.over else 0)))
         return ("; ".join(p for p in parts if p)[:900] or None), pursue
+
+    def shown(self, r: Requirement, asked: list[str], about: Variant) -> str:
+        """The orbit or product that refutes a requirement, if one does."""
+        lines = [x for x in self.results.proof.lines.values() if x.walk and x.variant == about]
+        if r.kind == "gain":
+            words = [x for x in lines if x.rule == "graph-product" and set(x.walk) <= set(asked)]
+            best = max(words, key=lambda x: x.concludes["lower"], default=None)
+            wanted = None if r.constant is None else constant(r.constant, self.claim.values)[0]
+            if best is None or wanted is None or best.concludes["lower"] < wanted:
+                return ""
+            at = "in the regions" if best.on_set else "at the targets"
+            rate = float(best.concludes["lower"])
+            return f"whatever the norms: Jacobians {at}, around {_way(best)}, grow on average by {rate:.7g} a step"
+        found = [
+            (far, key, x)
+            for x in lines
+            for key, far in x.concludes.items()
+            if key.partition(":")[0] in asked and r.state in (None, key.partition(":")[2])
+        ]
+        if r.kind not in ("bound", "sharp_bound", "settles") or not found:
+            return ""
+        far, key, line = max(found, key=lambda x: x[0])
+        stance, _, state = key.partition(":")
+        return f"an orbit around {_way(line)} takes {state} as far as {float(far):.6g} in {stance}, again and again"
 
     def why(self, r: Requirement) -> str:
         """The first thing that is missing."""
@@ -63,9 +92,11 @@ class StanceRemarks:
         if r.kind == "settles":
             return "the bound is not below the radius of the set in every stance"
         if r.kind == "steps":
+            if self.claim.horizon > 1:
+                return "steps are not counted yet where several are taken together"
             return "no proved sequence of steps is as short"
-        if r.kind == "bound" and r.state is not None:
-            return "the constant lies beyond what is proved; orbits between stances are not looked for yet"
+        if r.kind in ("bound", "sharp_bound") and r.state is not None:
+            return "the constant lies between what is proved and what orbits were found to reach"
         return "the constant lies beyond what is proved"
 
     def open(self, r: Requirement, outcome: Outcome) -> bool:
@@ -75,3 +106,11 @@ class StanceRemarks:
         low, high = constant(r.constant, self.claim.values)
         least, most = outcome.value.lower, outcome.value.upper
         return least is not None and most is not None and least <= high and low <= most and least < most
+
+
+def _way(line: Line) -> str:
+    """The stances of a closed walk, in words."""
+    if len(set(line.walk)) == 1:
+        return line.walk[0]
+    names = line.walk if len(line.walk) <= MOST_NAMED else (*line.walk[:MOST_NAMED], "…")
+    return ", ".join(names)

@@ -116,6 +116,7 @@ class Derivation:
             raise Unprovable("only the weight 1 can be checked for a single state")
         self.statement, self.stance, self.terms = statement, stance, Terms()
         self.onto = statement  # whose targets a step leads to (graph.py)
+        self.via: tuple[Statement, ...] = ()  # whose maps follow, of several steps through stances (graph.py)
         self.states = tuple(stance.states)
         self.state = self.states[0]  # of a claim of one state, that one
         self.motion: Motion | None = None
@@ -141,13 +142,15 @@ class Derivation:
 
     def after(self, steps: int, bound: dict[str, int], s: str, cut: str = "", parts: int = 0) -> int:
         """A state after so many steps, less what the target has moved until the last: proofs/horizon.md (1)."""
-        names = self.names(bound, cut, parts)
-        for j in range(2, steps + 1):
-            names = self.names({**bound, **onward(names, self.states, j, self.stays)})
-        root, target = names.of(f"next({s})"), f"target({s})"
-        if steps == 1 or not self.moving(s):
+        names, later = self.names(bound, cut, parts), self.via or (self.statement,) * (steps - 1)
+        for j, following in enumerate(later, 2):
+            bound = {**bound, **onward(names, self.states, j, self.stays)}
+            names = Names(self.terms, following, bound, "", self.landed)
+        root = names.of(f"next({s})")
+        if not later or not self.moving(s):
             return root
-        return self.terms.put("add", (root, self.terms.put("sub", (self.names().of(target), names.of(target)))))
+        first, last = (Names(self.terms, self.onto, x, "").of(f"target({s})") for x in ({}, bound))
+        return self.terms.put("add", (root, self.terms.put("sub", (first, last))))
 
     def stays(self, x: int, name: str) -> int:
         """A state or held quantity on the way, clipped where libraries and flows are known for its range only."""
@@ -175,6 +178,8 @@ class Derivation:
         kind, after, s, by = found.groups() if found else ("", None, self.state, None)
         if s not in self.states or (after is not None and kind not in ("target-miss", "slope")):
             raise Unprovable(f"{name} is no obligation of this claim")
+        if self.via and kind in ("split-slope", "split-residual"):
+            raise Unprovable(f"{name}: known of single steps between stances")
         steps = self.steps(after)
         if by is None and kind == "target":
             return self.over(self.names().of(f"target({s})"))
@@ -356,7 +361,7 @@ class Derivation:
 
     def moving(self, state: str = "") -> list[str]:
         """Held quantities that may change from step to step and that the target depends on."""
-        met = self.terms.variables(self.names().of(f"target({state or self.state})"))
+        met = self.terms.variables(Names(self.terms, self.onto, {}, "").of(f"target({state or self.state})"))
         return [h for h in met if self.statement.uncertain[h].change is not None]
 
     def through(self, domain: Domain, over: dict[str, Range]) -> tuple[dict[str, int], dict[str, tuple[Ends, Ends]]]:

@@ -10,6 +10,7 @@ from typing import Any
 
 from .calculus import Unprovable
 from .derive import Derivation, Domain, varied
+from .horizon import together
 from .jacobians import OF_COMPARISON, OF_ROUTE, Table, sloped
 from .matrices import Leaf, Matrix, Metric, metric
 from .model import Statement
@@ -18,6 +19,7 @@ from .several import ball, gone_through, hull, matrix, moved, movements, numbers
 from .theorems import Line, Quantities, parted, require
 
 MOST_STANCES = 16
+MOST_WALKS = 64
 OF_STANCE = ("metric", "range", "point", "squares", "trajectory", "largest-ball", "smaller-ball")
 Vectors = dict[str, list[Fraction]]  # one a stance
 
@@ -26,14 +28,19 @@ class Graph:
     """A claim of named stances: what each asks, and every step from one to the next."""
 
     def __init__(self, statement: Statement) -> None:
-        if statement.horizon != 1 or statement.route not in ("best", *OF_ROUTE):
-            raise Unprovable("only the routes slope and split over one step can be checked between stances")
+        if statement.route not in ("best", *OF_ROUTE):
+            raise Unprovable("only the routes slope and split can be checked between stances")
+        if statement.horizon > 1 and statement.route == "split":
+            raise Unprovable("split between stances can be checked over one step only")
         if len(statement.stances) > MOST_STANCES:
             raise Unprovable(f"at most {MOST_STANCES} stances can be checked")
         self.statement = statement
         self.stances = {s.name: Derivation(of_stance(statement, s.name)) for s in statement.stances}
         self.steps = [(s.name, t) for s in statement.stances for t in s.then]
         self.between = {f"{s}>{t}": toward(self.stances[s], self.stances[t]) for s, t in self.steps}
+        self.walks = walks(self.steps, statement)
+        self.along = {">".join(w): self.between.get(">".join(w)) or along(self.stances, w) for w in self.walks}
+        self.ends = [(w[0], w[-1]) for w in self.walks]
 
     @property
     def first(self) -> Derivation:
@@ -51,7 +58,28 @@ def of_stance(statement: Statement, name: str) -> Statement:
     states = {x: stance.states[x] for x in statement.stances[0].states}
     asked = tuple(replace(r, stance=None) if r.stance == name else r for r in statement.requirements)
     alone = replace(stance, name="", then=(), states=states)
-    return replace(statement, stances=(alone,), requirements=asked)
+    return replace(statement, stances=(alone,), requirements=asked, horizon=1)
+
+
+def walks(steps: list[tuple[str, str]], statement: Statement) -> list[tuple[str, ...]]:
+    """All ways of as many steps as are taken together: proofs/graph.md (10). Raises Unprovable where none are."""
+    found: list[tuple[str, ...]] = [(s.name,) for s in statement.stances]
+    for _ in range(statement.horizon):
+        found = [(*w, t) for w in found for s, t in steps if s == w[-1]]
+        if statement.horizon > 1 and len(found) > MOST_WALKS:
+            raise Unprovable(f"horizon: more than {MOST_WALKS} ways of so many steps through the stances")
+    if statement.horizon > 1:
+        together(statement, None)
+        if statement.libraries or any(s.dynamics is not None for s in statement.stances):
+            raise Unprovable("horizon: of stances in closed form, without a library, only")
+    return found
+
+
+def along(stances: Mapping[str, Derivation], walk: tuple[str, ...]) -> Derivation:
+    """Several steps from the first stance of a walk to the target of the last."""
+    found = toward(stances[walk[0]], stances[walk[-1]])
+    found.via = tuple(stances[s].statement for s in walk[1:-1])
+    return found
 
 
 def of_ranges(statement: Statement, number: int) -> Statement:
@@ -63,7 +91,7 @@ def of_ranges(statement: Statement, number: int) -> Statement:
         for s in statement.stances
     )
     asked = tuple(replace(x, over={}) if n == number else x for n, x in enumerate(statement.requirements, 1))
-    return replace(one, stances=stances, requirements=asked)
+    return replace(one, stances=stances, requirements=asked, horizon=statement.horizon)
 
 
 def toward(d: Derivation, after: Derivation) -> Derivation:
@@ -75,9 +103,9 @@ def toward(d: Derivation, after: Derivation) -> Derivation:
 
 def of_part(g: Graph | None, part: str) -> Derivation:
     """What a line about a stance, a step or (the part that has no name) all of them refers to."""
-    if g is None or (part and part not in g.stances and part not in g.between):
+    if g is None or (part and part not in g.stances and part not in g.between and part not in g.along):
         raise Rejected(f"{part}: no stance of the claim, nor a step from one to the next")
-    return g.stances.get(part) or g.between.get(part) or g.first
+    return g.stances.get(part) or g.between.get(part) or g.along.get(part) or g.first
 
 
 def seen_from(part: str, line: Line) -> Line:
@@ -95,7 +123,7 @@ def stepping(
     line = Line(rule, proves, (), claimed)
     if part in g.stances:
         return about_stance(g.stances[part], part, rule, proves, used, witness, claimed)
-    if part in g.between:
+    if part in g.between or part in g.along:
         if rule in OF_ROUTE:
             domain, after = pair(g, part, rule, proves, used, claimed)
             return replace(line, domain=domain, metric=after)
@@ -131,7 +159,7 @@ def about_step(
     g: Graph, part: str, rule: str, proves: str, used: list[Line], witness: dict[str, Any], claimed: Quantities
 ) -> Line:
     """proofs/graph.md (1): Jacobians and misses over the set of a stance, seen in the norm of the next."""
-    d, (before, _, after) = g.between[part], part.partition(">")
+    d, (before, *_, after) = g.between.get(part) or g.along[part], part.split(">")
     used, flows = parted(used) if used and used[-1].part == before else (used, None)
     if [x.part for x in used] != [before, after] or used[1].rule != "metric":
         raise Rejected("uses: the set of the stance, the metric of the next")
@@ -171,7 +199,7 @@ def based(basis: Any, n: int) -> tuple[Matrix, Matrix]:
 
 def pair(g: Graph, part: str, route: str, proves: str, used: list[Line], claimed: Quantities) -> tuple[Domain, Metric]:
     """proofs/graph.md (2), proofs/split.md (3): gain and residual of a step, its error from the target that follows."""
-    after = part.partition(">")[2]
+    after = part.rpartition(">")[2]
     d = g.stances[after]
     ranges = [("range", f"target-slope[{s},{h}]") for s, h in movements(d)]
     require(proves, route, used, [*(("matrix", x) for x in OF_ROUTE[route]), *ranges])
@@ -229,7 +257,7 @@ def balls(g: Graph, proves: str, used: list[Line]) -> dict[str, Domain]:
     require(proves, "invariant", used, [*((x.rule, "ball") for x in sets), *[(route, route)] * len(g.steps)])
     parts(used, [*g.stances, *g.between])
     found = {x.part: x.domain for x in sets if x.domain is not None}
-    stepped(g, steps, found)
+    stepped(g.steps, steps, found)
     for (s, t), line in zip(g.steps, steps, strict=True):
         if not line.concludes["gain"] * found[s].outer + line.concludes["residual"] <= found[t].radius:
             raise Rejected(f"{s}>{t}: gain times radius plus residual exceeds the radius")
@@ -248,9 +276,9 @@ def kept(used: list[Line]) -> dict[str, Domain]:
     return used[0].domains
 
 
-def stepped(g: Graph, lines: list[Line], sets: Mapping[str, Domain]) -> None:
+def stepped(ends: list[tuple[str, str]], lines: list[Line], sets: Mapping[str, Domain]) -> None:
     """Raises Rejected unless gain and residual of every step are over these sets, in their norms."""
-    for (s, t), line in zip(g.steps, lines, strict=True):
+    for (s, t), line in zip(ends, lines, strict=True):
         if line.domain != sets[s] or line.metric != sets[t].metric:
             raise Rejected(f"{s}>{t}: gain and residual refer to another set or norm")
 
@@ -259,9 +287,9 @@ def bound(g: Graph, proves: str, used: list[Line], witness: dict[str, Any], clai
     """proofs/graph.md (4): k b + residual <= b of the next and k p < p of the next, on every step."""
     sets = kept(used)
     route = route_of(used[1:])
-    require(proves, f"bound[{route}]", used[1:], [(route, route)] * len(g.steps))
-    parts(used[1:], list(g.between))
-    stepped(g, used[1:], sets)
+    require(proves, f"bound[{route}]", used[1:], [(route, route)] * len(g.walks))
+    parts(used[1:], list(g.along))
+    stepped(g.ends, used[1:], sets)
     k: list[Matrix] = [((line.concludes["gain"],),) for line in used[1:]]
     residual = [[line.concludes["residual"]] for line in used[1:]]
     sizes = dict.fromkeys(g.stances, 1)
@@ -275,7 +303,7 @@ def compared(g: Graph, k: list[Matrix], residual: list[list[Fraction]], p: Vecto
     """proofs/graph.md (4), (5): p > 0, b >= 0; K p < p and K b + residual <= b of the next, on every step. Gives b."""
     if not all(x > 0 for s in p for x in p[s]) or not all(x >= 0 for s in b for x in b[s]):
         raise Rejected("p, b: p > 0 and b >= 0 are not met")
-    for (s, t), rows, missed in zip(g.steps, k, residual, strict=True):
+    for (s, t), rows, missed in zip(g.ends, k, residual, strict=True):
         for row, e, x, y in zip(rows, missed, p[t], b[t], strict=True):
             if not (all(z >= 0 for z in row) and times(row, p[s]) < x and times(row, b[s]) + e <= y):
                 raise Rejected(f"{s}>{t}: K p < p and K b + residual <= b are not both met")
@@ -298,18 +326,18 @@ def componentwise(
     """proofs/graph.md (5): a bound for each state in each stance, by comparison in a basis a stance."""
     moving = {name: movements(d) for name, d in g.stances.items()}
     name = proves if proves in OF_COMPARISON else "componentwise"
-    wanted = [("graph-entries", x) for _ in g.steps for x in OF_COMPARISON[name]]
+    wanted = [("graph-entries", x) for _ in g.walks for x in OF_COMPARISON[name]]
     wanted += [("range", f"target-slope[{s},{h}]") for each in moving.values() for s, h in each]
     sets = kept(used)
     require(proves, name, used[1:], wanted)
-    parts(used[1:], [e for e in g.between for _ in range(2)] + [name for name in moving for _ in moving[name]])
-    lines = used[1 : 1 + 2 * len(g.steps)]
+    parts(used[1:], [e for e in g.along for _ in range(2)] + [name for name in moving for _ in moving[name]])
+    lines = used[1 : 1 + 2 * len(g.walks)]
     ranges, far = iter(used[1 + len(lines) :]), dict[str, list[Fraction]]()
     for name, d in g.stances.items():
         far[name] = moved(d, [next(ranges) for _ in moving[name]])
     bases: dict[str, tuple[Matrix, Matrix]] = {}
     k, residual = [], []
-    for (s, t), slopes, misses in zip(g.steps, lines[::2], lines[1::2], strict=True):
+    for (s, t), slopes, misses in zip(g.ends, lines[::2], lines[1::2], strict=True):
         if slopes.domain != sets[s] or misses.domain != sets[s]:
             raise Rejected(f"{s}>{t}: entries of another set")
         for line in (slopes, misses):

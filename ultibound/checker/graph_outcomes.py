@@ -6,6 +6,7 @@ from fractions import Fraction
 from functools import partial
 from typing import Any
 
+from .cycle_outcomes import at_the_edge, farthest, grown, taken_in_any, taken_in_norm
 from .derive import RANGED, Domain
 from .gains import intervals
 from .grammar import constant
@@ -32,6 +33,7 @@ from .theorems import OWN, Variant
 
 ROUNDS = 400  # steps for which what is attained on every step is added up
 Levels = dict[str, Fraction]  # an error in the norm of each stance
+Way = tuple[str, ...]  # stances, each a step from the one before
 
 
 class StanceResults(SeveralResults):
@@ -96,11 +98,12 @@ class StanceResults(SeveralResults):
 
 
 class StepResults(Results):
-    """Gain and residual of one step by a route, proved and surely taken: proofs/graph.md (2), (7)."""
+    """Gain and residual of a step, or of several taken together, by a route, proved and surely taken: proofs/graph.md
+    (2), (7), (10)."""
 
-    def __init__(self, before: StanceResults, after: StanceResults, route: str) -> None:
+    def __init__(self, part: str, before: StanceResults, after: StanceResults, route: str) -> None:
         self.proof, self.variant = before.proof, before.variant
-        self.part, self.needed = f"{before.part}>{after.part}", set[int]()
+        self.part, self.needed = part, set[int]()
         self.before, line = before, self.one(route, route)
         self.shown = None if line is None else (line.concludes["gain"], line.concludes["residual"])
         if line is not None and (line.domain != before.domain or line.metric != after.metric):
@@ -145,6 +148,7 @@ class GraphResults(Results):
         self.bounds_by = {route: self.bounded_by(route) for route in self.onward}
         compared_by_state = self.comparisons()
         for name, x in self.each.items():
+            x.orbits = farthest(self, name)
             uppers = [b for found in self.bounds_by.values() if name in found and (b := found[name].upper) is not None]
             x.bounded(uppers, compared_by_state.get(name, {}))
         self.radius = least([x.radius for x in self.each.values()])
@@ -159,6 +163,9 @@ class GraphResults(Results):
 
     def stances(self) -> dict[str, Results]:
         return dict(self.each)
+
+    def sets(self) -> dict[str, Domain]:
+        return {name: x.domain for name, x in self.each.items() if x.domain is not None}
 
     def leaves_out(self, r: Any) -> bool:
         return any(x.derivation.leaves_out(r) for x in self.asked(r))
@@ -176,12 +183,12 @@ class GraphResults(Results):
         return "smaller ball", self.statement.shrink and wide
 
     def known_routes(self) -> list[str]:
-        """The routes of a claim of stances, whose gains are contractions all of them: proofs/graph.md (7)."""
-        return ["slope", *(["split"] if self.statement.correction else [])]
+        """The routes of a claim of stances, whose gains are contractions all of them: proofs/graph.md (7), (10)."""
+        return ["slope", *(["split"] if self.statement.correction and self.statement.horizon == 1 else [])]
 
-    def of_steps(self, route: str) -> dict[tuple[str, str], StepResults]:
-        """Every step from a stance to the next, by a route."""
-        return {(s, t): StepResults(self.each[s], self.each[t], route) for s, t in self.graph.steps}
+    def of_steps(self, route: str) -> dict[Way, StepResults]:
+        """Every step from a stance to the next, or so many as are taken together, by a route."""
+        return {w: StepResults(">".join(w), self.each[w[0]], self.each[w[-1]], route) for w in self.graph.walks}
 
     def bounded_by(self, route: str) -> dict[str, Span]:
         """proofs/graph.md (4): the bound in the norm of each stance; from below what the steps surely add up to."""
@@ -193,7 +200,7 @@ class GraphResults(Results):
         known = all(k is not None and e is not None for k, e in pairs.values())
         for _ in range(ROUNDS if known else 0):
             before = dict(least)
-            for (s, t), (k, e) in pairs.items():
+            for (s, *_, t), (k, e) in pairs.items():
                 sum_ = (k or 0) * before[s] + (e or 0)
                 least[t] = max(least[t], Fraction(sum_ * GRAIN // 1, GRAIN))
             if least == before:
@@ -211,28 +218,38 @@ class GraphResults(Results):
                 found.setdefault(name, {})[s] = least
                 self.needed.add(n)
         for _, line in lines:
-            if line.domains != {name: x.domain for name, x in self.each.items()}:
+            if line.domains != self.sets():
                 raise Rejected("the comparison refers to other sets")
         return found
 
     def largest(self, names: list[str], route: str) -> Route:
         """Gain and residual of the steps that leave these stances, and the bounds in them: the largest."""
-        steps = [x for (s, _), x in self.onward.get(route, {}).items() if s in names]
-        bounds = [self.bounds_by[route][s] for s in names] if self.bounds_by.get(route) else []
+        steps = [x for (s, *_), x in self.onward.get(route, {}).items() if s in names]
+        known = [(self.each[s], x) for s in names if (x := self.bounds_by.get(route, {}).get(s)) is not None]
+        bounds = [Span(greater(x.lower, taken_in_norm(stance)), x.upper) for stance, x in known]
         gain, residual = most([x.gain for x in steps]), most([x.residual for x in steps])
+        if steps and route == "slope":
+            gain = Span(greater(gain.lower, grown(self, names)[0]), gain.upper)
         return Route(gain, residual, most(bounds) if bounds else None)
 
     def contraction_in(self, names: list[str]) -> Span:
         """The best gain of the routes: from above that of one on every step, from below the least of all on a step."""
         gains = [self.largest(names, route).gain.upper for route in self.onward]
         lowers = []
-        for step in self.graph.steps:
+        for step in self.graph.walks if self.all_told() else ():
             found = [steps[step] for steps in self.steps_by.values()]
             taken = [k for x in found if (k := x.gain.lower) is not None]
             if step[0] in names and found and len(taken) == len(found):
                 lowers.append(min(taken))
                 self.needed |= {n for x in found for n in x.needed}
-        return Span(max(lowers, default=None), min([k for k in gains if k is not None], default=None))
+        lower = max(lowers, default=None)
+        if self.onward and not self.statement.correction:
+            lower = greater(lower, grown(self, names)[0])
+        return Span(lower, min([k for k in gains if k is not None], default=None))
+
+    def all_told(self) -> bool:
+        """Whether no route is left that might have a smaller gain: split of several steps together is not known."""
+        return self.statement.horizon == 1 or self.statement.route == "slope" or not self.statement.correction
 
     def asked(self, r: Any) -> list[StanceResults]:
         """The stances that a requirement is about."""
@@ -257,11 +274,10 @@ class GraphResults(Results):
         if r.kind == "steps":
             return self.counted(several, r, c)
         if r.state is not None:  # by the best argument, for either name
-            spans = [x.long_run(r.state) for x in several]
-            span = most([x for x in spans if x is not None]) if None not in spans else None
-            return verdict(
-                self.whole and span is not None and compared(r.relation, Span(None, span.upper), c), False, span
-            )
+            span = self.long_run(several, r.state)
+            proved = self.whole and span is not None and compared(r.relation, Span(None, span.upper), c)
+            taken = Span(None, None if span is None else span.lower)
+            return verdict(proved, not self.any and opposed(r.relation, taken, c), span)
         return self.in_norms(several, r, c)
 
     def in_norms(self, several: list[StanceResults], r: Any, c: tuple[Fraction, Fraction]) -> Outcome:
@@ -273,12 +289,31 @@ class GraphResults(Results):
         upper = Span(None, None if found is None else found.upper)
         means = r.kind == "gain" or all(x.meant() for x in self.each.values())
         proved = self.whole and compared(r.relation, upper, c) and means
+        taken, final = self.surely_in_norms(several, r, found)
+        return verdict(proved, final and not self.any and opposed(r.relation, Span(None, taken), c), found)
+
+    def surely_in_norms(self, several: list[StanceResults], r: Any, found: Span | None) -> tuple[Fraction | None, bool]:
+        """What is taken in whatever norms a proof may choose, and whether that settles what is asked."""
+        if r.kind == "bound":
+            least = taken_in_norm if self.fixed() else taken_in_any  # proofs/graph.md (8)
+            return max((y for x in several if (y := least(x)) is not None), default=None), True
         # in a metric the claim fixes, what is surely taken settles it; in another norm it might be less
-        final = self.fixed() and not self.any and not self.partial
-        slopes = self.steps_by.get("slope", {}).items()
-        missed = [x.missed for (s, _), x in slopes if s in names and x.missed is not None]
-        least = {"gain": gain.lower, "residual": max(missed, default=None)}.get(r.kind)
-        return verdict(proved, final and opposed(r.relation, Span(None, least), c), found)
+        fixed = self.fixed() and not self.partial
+        if r.kind != "gain":
+            slopes, names = self.steps_by.get("slope", {}).items(), [x.part for x in several]
+            missed = [x.missed for (s, *_), x in slopes if s in names and x.missed is not None]
+            return max(missed, default=None) if fixed else None, True
+        taken = found.lower if found is not None and fixed else None
+        growth, everywhere = grown(self, [x.part for x in several])
+        alone = self.statement.route == "slope" or not self.statement.correction  # what grows are slopes of the map
+        return greater(taken, growth if everywhere and alone else None), self.all_told()
+
+    def long_run(self, several: list[StanceResults], state: str) -> Span | None:
+        """How far a state can be in these stances in the long run: taken by orbits, and proved."""
+        spans = [x.long_run(state) for x in several]
+        known = [x for x in spans if x is not None]
+        span = most(known)
+        return None if span == NOTHING else span if None not in spans else Span(span.lower, None)
 
     def fixed(self) -> bool:
         """Whether the claim itself fixes the norms."""
@@ -294,7 +329,8 @@ class GraphResults(Results):
             else:
                 ok &= less(near, x.radius.lower)
             bounds += [near] if near is not None else []
-        return verdict(ok, False, Span(None, max(bounds)) if len(bounds) == len(several) else None)
+        beyond = not self.any and any(at_the_edge(self, x) for x in several)
+        return verdict(ok, beyond, Span(None, max(bounds)) if len(bounds) == len(several) else None)
 
     def wide(self, several: list[StanceResults], state: str | None) -> Span | None:
         """How far a start may be from the target, of a state or in the norm."""
@@ -312,7 +348,8 @@ class GraphResults(Results):
         """proofs/graph.md (6): steps after which a state stays within `to`, from any of these stances, by any route."""
         start, end = (constant(e, self.statement.values) for e in (r.start, r.end))
         i, limit, counts = self.states.index(r.state), self.wide(several, r.state), list[int]()
-        if limit is not None and less(start[1], limit.lower, equal=True):
+        single = self.statement.horizon == 1  # where a horizon starts from is not known at every step
+        if single and limit is not None and less(start[1], limit.lower, equal=True):
             levels = {x.part: start[1] * x.metric.unit(i)[1] for x in several}
             goal = {name: end[0] / x.metric.support(i) for name, x in self.each.items()}
             for route in self.onward:
@@ -327,10 +364,10 @@ class GraphResults(Results):
         pairs = self.pairs(route)
         found = dict(wanted)
         for _ in self.each if pairs else ():
-            for (s, t), (k, e) in pairs.items():
+            for (s, *_, t), (k, e) in pairs.items():
                 if k > 0:
                     found[s] = min(found[s], (found[t] - e) / k)
-        kept = all(k * found[s] + e <= found[t] for (s, t), (k, e) in pairs.items())
+        kept = all(k * found[s] + e <= found[t] for (s, *_, t), (k, e) in pairs.items())
         return found if pairs and kept and min(found.values()) >= 0 else None
 
     def count_of(self, levels: Levels, wanted: Levels, route: str) -> int | None:
@@ -342,13 +379,13 @@ class GraphResults(Results):
                 return None
             once = levels if n & (n - 1) == 0 else once
             after: Levels = {}
-            for (s, t), (k, e) in pairs.items():
+            for (s, *_, t), (k, e) in pairs.items():
                 if s in levels:
                     after[t] = max(after.get(t, Fraction(0)), rounded(k * levels[s] + e))
             levels = after
         return None
 
-    def pairs(self, route: str) -> dict[tuple[str, str], tuple[Fraction, Fraction]]:
+    def pairs(self, route: str) -> dict[Way, tuple[Fraction, Fraction]]:
         """Gain and residual of every step, proved by a route."""
         return {step: x.shown for step, x in self.onward[route].items() if x.shown is not None}
 

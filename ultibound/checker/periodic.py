@@ -8,60 +8,82 @@ from typing import Any
 
 from .courses import arithmetic, nearest, valued
 from .derive import Derivation, Domain, Meaning, Ranged
+from .exact import Exact
 from .flows import Flows
 from .jacobians import together
 from .numerals import Rejected, quantity
 from .ranges import Ends, Evaluator
+from .reals import Scaled
 from .theorems import Line, Quantities, parted
 
 LONGEST = 1000
+
+
+class Pointwise:
+    """The map and the target of every state, ready to be followed from points or narrow enclosures."""
+
+    def __init__(self, d: Derivation, a: Scaled | Exact, flows: Flows | None) -> None:
+        self.d, self.a, self.spans = d, a, variables_of(d)
+        steps, targets = meanings(d)
+        self.order = [v.name for v in together([*steps, *targets])]
+        self.step, self.target = (
+            [Evaluator(d.terms, m.root, "", self.order, d.statement.libraries, a, flows) for m in several]
+            for several in (steps, targets)
+        )
+        self.held = {n for n, q in d.statement.uncertain.items() if q.held and n in self.spans}
+
+    def valued(self, held: dict[str, Any], fresh: Any) -> dict[str, Ends]:
+        """What a witness states for one step; what is held, for all of them."""
+        if not isinstance(fresh, dict) or set(fresh) != set(self.spans) - self.held:
+            raise Rejected("steps: one value for each quantity that is not held, a step")
+        return {n: valued(self.spans[n], held[n] if n in self.held else fresh[n]) for n in self.spans}
+
+    def centre(self, values: dict[str, Ends]) -> list[Ends]:
+        return self._run(self.target, dict.fromkeys(self.d.states, (Fraction(0), Fraction(0))) | values)
+
+    def after(self, states: list[Ends], values: dict[str, Ends]) -> list[Ends]:
+        return self._run(self.step, dict(zip(self.d.states, states, strict=True)) | values)
+
+    def _run(self, evaluators: list[Evaluator], values: dict[str, Ends]) -> list[Ends]:
+        box = [values[n] for n in self.order]
+        return [self.a.ends(e.run(box, False).v) for e in evaluators]
 
 
 class Round:
     """The map followed from a start that a witness states as errors, with its held and fresh values."""
 
     def __init__(self, d: Derivation, witness: dict[str, Any], flows: Flows | None) -> None:
-        self.d, self.a = d, arithmetic(witness["bits"])
-        steps, targets = meanings(d)
-        met = [v.name for v in together([*steps, *targets])]
-        self.spans, self.order = variables_of(d), met
-        self.step, self.target = (
-            [Evaluator(d.terms, m.root, "", met, d.statement.libraries, self.a, flows) for m in several]
-            for several in (steps, targets)
-        )
-        held = {n for n, q in d.statement.uncertain.items() if q.held and n in self.spans}
+        self.d, self.maps = d, Pointwise(d, arithmetic(witness["bits"]), flows)
         given, each, start = witness["held"], witness["steps"], witness["start"]
-        if not isinstance(given, dict) or set(given) != held:
+        if not isinstance(given, dict) or set(given) != self.maps.held:
             raise Rejected("held: one value for each held quantity the map and its target depend on")
         if not isinstance(each, list) or not 0 < len(each) <= LONGEST:
             raise Rejected(f"steps: a list of 1 to {LONGEST}")
-        if any(not isinstance(w, dict) or set(w) != set(self.spans) - held for w in each):
-            raise Rejected("steps: one value for each quantity that is not held, a step")
-        if not isinstance(start, dict) or set(start) != set(d.states):
-            raise Rejected("start: an error of each state")
-        same = {n: valued(self.spans[n], text) for n, text in given.items()}
-        self.values = [same | {n: valued(self.spans[n], text) for n, text in w.items()} for w in each]
-        self.errors = [quantity(start[s], "start") for s in d.states]
-        nothing = dict.fromkeys(d.states, (Fraction(0), Fraction(0)))
-        self.centre = self.run(self.target, nothing | self.values[0])
-
-    def run(self, evaluators: list[Evaluator], values: dict[str, Ends]) -> list[Ends]:
-        box = [values[n] for n in self.order]
-        return [self.a.ends(e.run(box, False).v) for e in evaluators]
+        self.values = [self.maps.valued(given, w) for w in each]
+        self.errors = started(d, start)
+        self.centre = self.maps.centre(self.values[0])
 
     def follow(self) -> list[list[Ends]]:
         """The states from the first to the one after the last step."""
         found = [[(low + e, high + e) for (low, high), e in zip(self.centre, self.errors, strict=True)]]
         for values in self.values:
-            found.append(self.run(self.step, dict(zip(self.d.states, found[-1], strict=True)) | values))
+            found.append(self.maps.after(found[-1], values))
         return found
 
-    def starts_in(self, domain: Domain, start: list[Ends]) -> bool:
-        """Whether the start is surely in the set."""
-        if domain.ball:
-            return domain.metric is not None and domain.metric.most(self.errors) <= domain.radius
-        regions = [self.d.region(s)[1] for s in self.d.states]
-        return all(low <= x[0] and x[1] <= high for x, (low, high) in zip(start, regions, strict=True))
+
+def started(d: Derivation, start: Any) -> list[Fraction]:
+    """The errors at the start of a round, as a witness states them."""
+    if not isinstance(start, dict) or set(start) != set(d.states):
+        raise Rejected("start: an error of each state")
+    return [quantity(start[s], "start") for s in d.states]
+
+
+def starts_in(d: Derivation, domain: Domain, errors: list[Fraction], start: list[Ends]) -> bool:
+    """Whether a start is surely in the set."""
+    if domain.ball:
+        return domain.metric is not None and domain.metric.most(errors) <= domain.radius
+    regions = [d.region(s)[1] for s in d.states]
+    return all(low <= x[0] and x[1] <= high for x, (low, high) in zip(start, regions, strict=True))
 
 
 def meanings(d: Derivation) -> tuple[list[Meaning], list[Meaning]]:
@@ -95,7 +117,7 @@ def periodic(d: Derivation, proves: str, used: list[Line], witness: dict[str, An
     rounds, rest = divmod(len(course.values), n)
     if rest:
         raise Rejected("steps: a whole number of horizons")
-    if not course.starts_in(domain, states[0]):
+    if not starts_in(d, domain, course.errors, states[0]):
         raise Rejected("start: not shown to be in the set")
     ends = [max(b[1] - a[0], a[1] - b[0]) for a, b in zip(states[0], states[-1], strict=True)]
     near = norm.length(ends) / (1 - k**rounds)

@@ -46,16 +46,16 @@ def product(d: Derivation, proves: str, used: list[Line], witness: dict[str, Any
     places = [table.place(at) for at in points]
     for one, next_ in pairwise([*places, places[0]]):
         follow(d, table, one, next_)
-    trace = traced(table, points, power)
+    trace = traced([table.at(at) for at in points], power)
     if not shown(trace, claimed["lower"], len(points) * power, len(d.states)):
         raise Rejected("lower: the trace is not shown to be so large")
     away = not all(at_target(d, domain, table, x) for x in places)
     return Line("product", proves, (), claimed, domain, away)
 
 
-def traced(table: Table, points: list[Any], power: int) -> Fraction:
-    """Lower bound of |tr M^power|, M the product of the Jacobians at the points, the first step first."""
-    steps = [rough(table.at(at)) for at in points]
+def traced(jacobians: list[list[list[Ends]]], power: int) -> Fraction:
+    """Lower bound of |tr M^power|, M the product of the Jacobians, the first step first."""
+    steps = [rough(rows) for rows in jacobians]
     return least_trace(raised(reduce(lambda before, step: multiplied(step, before), steps), power))
 
 

@@ -11,6 +11,7 @@ from typing import Any
 from .attracting import attracting
 from .calculus import Unprovable
 from .courses import arithmetic, orbit, path, place
+from .cycles import around
 from .derive import Derivation, varied
 from .flows import trajectory
 from .forms import walk
@@ -58,6 +59,9 @@ SHAPES: dict[str, tuple[tuple[str, ...], tuple[str, ...] | None]] = {
     "graph-bound": (("b", "p"), None),  # one a stance
     "graph-entries": (("after", "before", "bits", "trees"), None),  # one an entry
     "graph-componentwise": (("b", "p"), None),  # one a state of each stance
+    "graph-orbit": (("bits", "held", "stances", "start", "steps"), None),  # one a stance on the way
+    "graph-periodic": (("bits", "held", "stances", "start", "steps"), None),  # one a state of each stance on the way
+    "graph-product": (("bits", "held", "points", "power", "stances"), ("lower",)),
     "product": (("bits", "points", "power"), ("lower",)),
     "gains": (("gain", "lower", "upper"), ()),
     "sensitivity-gain": ((), ("best", "gain", "lower", "upper")),
@@ -65,7 +69,7 @@ SHAPES: dict[str, tuple[tuple[str, ...], tuple[str, ...] | None]] = {
 }
 NUMBER = r"\[([1-9][0-9]{0,3})\]:"
 NAMED = re.compile(
-    rf"(?:gains{NUMBER})?(?:over{NUMBER})?(?:([A-Za-z]\w*(?:>[A-Za-z]\w*)?):)?(.*)", re.ASCII | re.DOTALL
+    rf"(?:gains{NUMBER})?(?:over{NUMBER})?(?:([A-Za-z]\w*(?:>[A-Za-z]\w*)*):)?(.*)", re.ASCII | re.DOTALL
 )
 
 
@@ -143,7 +147,10 @@ class Proof:
             raise Rejected("uses: lines about other ranges")
         try:
             d, g = self.about(variant, part), self.stanced(variant)
-            if g is not None and (one := stepping(g, part, rule, proves, used, witness, claimed)):
+            if g is not None and (
+                one := around(g, part, rule, proves, used, witness, claimed)
+                or stepping(g, part, rule, proves, used, witness, claimed)
+            ):
                 line = replace(one, uses=tuple(uses))
                 self.leaves += one.leaves
             elif rule == "gains":
@@ -175,6 +182,8 @@ class Proof:
             elif rule in ("orbit", "path"):
                 course = orbit if rule == "orbit" else path
                 line = Line(rule, proves, tuple(uses), claimed, course(d, proves, used, witness, claimed))
+            elif rule not in THEOREMS:
+                raise Rejected(f"{rule}: known between named stances only")
             else:
                 proved = THEOREMS[rule](d, proves, used, claimed)
                 line = Line(rule, proves, tuple(uses), claimed, proved)

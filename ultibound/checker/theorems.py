@@ -57,6 +57,7 @@ class Line:
     part: str = ""  # the stance, or the step from one to the next, that the line is about (graph.py)
     domains: dict[str, Domain] | None = None  # of all stances
     bases: tuple[tuple[Matrix, Matrix], ...] | None = None  # of entries of a step: before it, and after
+    walk: tuple[str, ...] = ()  # the stances that an orbit or a product goes round (cycles.py)
 
 
 def parted(used: list[Line]) -> tuple[list[Line], Flows | None]:

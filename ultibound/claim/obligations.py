@@ -118,35 +118,47 @@ class Obligations:
         s = state or self.state
         return self._of(f"image[{s}]", self._scope({}).name(f"next({s})"))
 
-    def slope(self, domain: Domain, of: str = "", by: str = "", steps: int = 0) -> Obligation:
-        """slope[s,x]: ∂F_s/∂x over the set and uncertain values; slope@j[s,x]: of j steps, fewer than the horizon."""
+    def slope(
+        self, domain: Domain, of: str = "", by: str = "", steps: int = 0, way: Sequence[Stance] = ()
+    ) -> Obligation:
+        """slope[s,x]: ∂F_s/∂x over the set and uncertain values; slope@j[s,x]: of j steps, fewer than the horizon.
+
+        `way`: the stances of the steps that follow, and that whose target is theirs.
+        """
         bound, ranges = self._set(domain)
         s, x, on = of or self.state, by or self.state, f"@{steps}" if steps else ""
-        return self._of(f"slope{on}[{s},{x}]", self._after(bound, s, x, steps), x, ranges)
+        return self._of(f"slope{on}[{s},{x}]", self._after(bound, s, x, steps, way=way), x, ranges)
 
-    def miss(self, state: str = "", steps: int = 0, onto: Stance | None = None) -> Obligation:
+    def miss(self, state: str = "", steps: int = 0, way: Sequence[Stance] = ()) -> Obligation:
         """target-miss[s]: F(x*, w) − x* over uncertain values; target-miss@j[s]: of j steps.
 
-        `onto`: the second x* is that of the stance that follows.
+        `way`: stances that follow, the second x* that of the last.
         """
         s, on = state or self.state, f"@{steps}" if steps else ""
         targets = {x: self._scope({}).name(f"target({x})") for x in self.states}
-        aim = Scope(self.graph, self.claim, onto or self.stance).name(f"target({s})")
-        return self._of(f"target-miss{on}[{s}]", self.graph.difference(self._after(targets, s, steps=steps), aim))
+        aim = Scope(self.graph, self.claim, way[-1] if way else self.stance).name(f"target({s})")
+        end = self._after(targets, s, steps=steps, way=way)
+        return self._of(f"target-miss{on}[{s}]", self.graph.difference(end, aim))
 
-    def _after(self, bound: Mapping[str, int], s: str, cut: str = "", steps: int = 0, parts: int = 0) -> int:
+    def _after(
+        self, bound: Mapping[str, int], s: str, cut: str = "", steps: int = 0, parts: int = 0,
+        way: Sequence[Stance] = (),
+    ) -> int:  # fmt: skip
         """A state after the steps of the horizon, or as many as said, less what the target has moved until the last.
 
         proofs/horizon.md (1)
         """
-        scope, count = self._scope(bound, cut, parts), steps or self.claim.horizon
-        for j in range(2, count + 1):
-            scope = self._scope({**bound, **self._onward(scope, j)})
-        root, target = scope.name(f"next({s})"), f"target({s})"
-        if count == 1 or not self.moving(s):
+        scope, g, aim = self._scope(bound, cut, parts), self.graph, way[-1] if way else self.stance
+        later = way[:-1] or (self.stance,) * ((steps or self.claim.horizon) - 1)
+        for j, stance in enumerate(later, 2):
+            bound = {**bound, **self._onward(scope, j)}
+            scope = Scope(g, self.claim, stance, bound, "", self._landed)
+        root = scope.name(f"next({s})")
+        first = Scope(g, self.claim, aim).name(f"target({s})")
+        if not later or all(self.claim.uncertain[h].change is None for h in g.variables(first)):
             return root
-        g = self.graph
-        return g.add("add", root, g.add("sub", self._scope({}).name(target), scope.name(target)))
+        last = Scope(g, self.claim, aim, bound).name(f"target({s})")
+        return g.add("add", root, g.add("sub", first, last))
 
     def _onward(self, scope: Scope, step: int) -> dict[str, int]:
         """Gates that names stand for at a step, from those of the step before."""

@@ -13,6 +13,7 @@ from .obligations import Domain, Obligations
 
 MOST_STATES = 6
 MOST_STANCES = 16
+MOST_WALKS = 64  # of the steps of a horizon
 
 
 def varied(claim: Claim, number: int) -> Claim:
@@ -66,7 +67,7 @@ def of_stance(claim: Claim, name: str) -> Claim:
     states = {x: stance.states[x] for x in claim.stances[0].states}
     asked = tuple(replace(r, stance=None) if r.stance == name else r for r in claim.requirements)
     alone = replace(stance, name="", then=(), states=states)
-    return replace(claim, stances=(alone,), requirements=asked)
+    return replace(claim, stances=(alone,), requirements=asked, horizon=1)
 
 
 def not_yet(claim: Claim) -> str | None:
@@ -137,9 +138,35 @@ def _not_between(claim: Claim) -> str | None:
         return f"stance: {len(claim.stances)} stances; claims of up to {MOST_STANCES} stances can be proved"
     if claim.route not in ("best", "slope", "split"):
         return f"route: {claim.route} is not known between stances yet; use slope, split or best"
-    if claim.horizon != 1:
-        return f"horizon: {claim.horizon}; between stances one step at a time can be proved yet; remove the key"
+    if claim.horizon > 1 and claim.route == "split":
+        return "horizon: by the route split one step at a time can be proved between stances yet; use slope or best"
+    if claim.horizon > 1 and (why := _not_together(claim)) is not None:
+        return f"horizon: {why}"
     return None
+
+
+def _not_together(claim: Claim) -> str | None:
+    """Why the steps of a horizon cannot be taken together through stances; None where they can."""
+    if any(s.dynamics is not None for s in claim.stances) or claim.libraries:
+        return "between stances only maps in closed form, without a library, can be taken together yet; remove the key"
+    if any(q.change is not None and q.values is not None for q in claim.uncertain.values()):
+        return "a held quantity of a finite list that changes is followed for one step at a time only, yet"
+    try:
+        walks(claim)
+    except Bad as why:
+        return str(why)
+    return None
+
+
+def walks(claim: Claim) -> list[tuple[str, ...]]:
+    """All ways of as many steps as the horizon through the stances. Raises Bad where there are too many."""
+    then = {s.name: s.then for s in claim.stances}
+    ways: list[tuple[str, ...]] = [(s.name,) for s in claim.stances]
+    for _ in range(claim.horizon):
+        ways = [(*w, t) for w in ways for t in then[w[-1]]]
+        if len(ways) > MOST_WALKS:
+            raise Bad(f"more than {MOST_WALKS} ways of {claim.horizon} steps through the stances; take fewer together")
+    return ways
 
 
 def _folded(claim: Claim, r: Requirement) -> tuple[set[str], set[str]]:

@@ -51,7 +51,7 @@ class Map:
         self, variables: list[Variable], states: tuple[str, ...], run: Callable[[Floats], Floats],
         target: Callable[[Values], list[float]], held: frozenset[str],
     ) -> None:  # fmt: skip
-        self.variables, self.states, self.run, self.target = variables, states, run, target
+        self.variables, self.states, self.run, self.target, self.held_names = variables, states, run, target, held
         rng = np.random.default_rng(0)
         others = [v for v in variables if v.name not in states]
         self.fresh = combinations([v for v in others if v.name not in held], rng)

@@ -4,6 +4,7 @@ from __future__ import annotations
 
 from collections.abc import Mapping
 from fractions import Fraction
+from itertools import chain
 from math import floor, log10
 from typing import Any
 
@@ -11,8 +12,9 @@ import numpy as np
 
 from ..bounding.evaluate import to_float
 from ..certificate.certificate import sealed
+from ..certificate.cycles import CycleWriter
 from ..certificate.enclosing import Encloser, Watch
-from ..certificate.graph import Basis, GraphWriter, Step
+from ..certificate.graph import Basis, Step
 from ..certificate.results import assembled
 from ..certificate.stances import StanceRemarks
 from ..checker.derive import Derivation
@@ -23,22 +25,24 @@ from ..checker.statement import read_statement
 from ..checker.theorems import Variant
 from ..claim import Bad, Claim
 from ..claim.obligations import RANGED, Domain
-from ..claim.provable import varied
+from ..claim.provable import varied, walks
 from ..contraction.graph import Family, Samples, bounds, families, radii
 from ..contraction.norms import floats
+from .cycles import going_round, growing_round
 from .one import COARSE, DECIDED, Attempt, Known, apart
-from .several import SHARES, SPARE, identity
+from .several import SHARES, SPARE, identity, in_unit
 from .stances import StanceSearch, StepSearch
 
 TRIED = 6  # families of norms, the best by samples first
 WIDENED = 5  # times that smaller balls are widened
-Pairs = Mapping[Step, tuple[float, float]]
+Pairs = Mapping[tuple[str, str], tuple[float, float]]
+Way = tuple[str, ...]
 
 
 class GraphAttempt(Attempt):
     """One pass through the proof of a claim of named stances at one gap."""
 
-    writer: GraphWriter
+    writer: CycleWriter
 
     def __init__(
         self, claim: Claim, gap: float, until: float, watch: Watch, sharp: bool, within: Fraction | None = None,
@@ -55,7 +59,7 @@ class GraphAttempt(Attempt):
         statement = read_statement(claim.text, claim.settings, claim.data)
         self.proof: Proof = proof_of(of_ranges(statement, variant) if variant else statement)
         self.raw: list[dict[str, Any]] = []
-        self.writer = GraphWriter(self.proof, self.raw, "")
+        self.writer = CycleWriter(self.proof, self.raw, "")
         self.enclosers: list[Encloser] = []
         self.smaller, self.curve_may_help = None, False
         self.known = known if known is not None else {}
@@ -65,18 +69,17 @@ class GraphAttempt(Attempt):
             self.stances[s.name] = StanceSearch(claim, s, self.writer, gap, until, watch, self.enclosers, each, variant)
             if each:
                 self.known[n] = each[variant]
-        self.steps = {
-            (s.name, t): StepSearch(self.stances[s.name], self.stances[t], until, self.enclosers)
-            for s in claim.stances
-            for t in s.then
-        }
+        self.steps = {(s.name, t): self._search((s.name, t)) for s in claim.stances for t in s.then}
+        ways: list[Way] = walks(claim) if claim.horizon > 1 else list(self.steps)
+        self.walks = {w: self.steps[w[0], w[1]] if len(w) == 2 else self._search(w) for w in ways}
         self.routes, self.leading = self._known_routes(), "slope"
         self._prove()
         for number in () if variant else apart(claim):
             self._over(number)
         self.results = results_of(self.proof)
         limits = {f"{x.writer.named(n)}": y for x in self.stances.values() for n, y in x.ranges.limits.items()}
-        limits |= {f"{s}>{t}:{n}": y for (s, t), x in self.steps.items() for n, y in x.ranges.limits.items()}
+        for step in (*self.steps.values(), *self.walks.values()):
+            limits |= {f"{step.part}:{n}": y for n, y in step.ranges.limits.items()}
         self.ranges = self.enclosers[0]
         self.ranges.limits = limits
         self.ranges.spent = sum(x.spent for x in self.enclosers)
@@ -89,7 +92,7 @@ class GraphAttempt(Attempt):
 
     def _known_routes(self) -> list[str]:
         """The routes that gain and residual may come from: split where every step can be told apart from it."""
-        if not self.claim.correction:
+        if not self.claim.correction or self.claim.horizon > 1:
             return ["slope"]
         try:
             for x in self.steps.values():
@@ -118,36 +121,47 @@ class GraphAttempt(Attempt):
                 x.ranges.enclose(o.support(k, x.domain), on[s], gap=DECIDED, side=-1)
             x._growth(x.domain, on[s])
         moves = {s: x._movements() for s, x in each.items()}
-        for (_, t), step in self.steps.items():
-            step.into(norms[t])
-        pairs = {route: lines for route in self.routes if (lines := self._stepped(route, on, moves)) is not None}
-        for lines in pairs.values():
-            if invariant is None:
-                invariant = self._balls([sets[s] for s in each], lines)
+        for search in (*self.steps.values(), *self.walks.values()):
+            search.into(norms[search.after.stance.name])
+        pairs = self._stepped(self.walks, on, moves)
+        if invariant is None:
+            for single in (pairs if self.claim.horizon == 1 else self._stepped(self.steps, on, moves)).values():
+                invariant = self._balls([sets[s] for s in each], single) if invariant is None else invariant
         if invariant is not None:
             for route, lines in pairs.items():
                 w.bound(invariant, lines, route)
                 self._compared(invariant, on, moves, route)
+        slopes = pairs.get("slope", {})
+        growing_round(self, list(dict.fromkeys(on.values())), slopes)
+        if invariant is not None and (len(self.claim.stances[0].states) == 1 or slopes):
+            going_round(self, invariant, slopes)
         for k, r in enumerate(self.claim.requirements, 1):
             for s, x in each.items():
                 if r.kind in RANGED and r.stance in (None, s) and not self.variant:
                     x._ranged(k, x.domain, on[s], points=True)
 
+    def _search(self, way: Way) -> StepSearch:
+        return StepSearch([self.stances[s] for s in way], self.until, self.enclosers)
+
     def _stepped(
-        self, route: str, on: Mapping[str, int], moves: Mapping[str, list[int] | None]
-    ) -> dict[Step, int] | None:
-        """Gain and residual of every step by a route; None where one has none, or they do not contract together."""
-        if route == "split" and not self._contracts(route):
-            for (s, _), step in self.steps.items() if any(r.kind == "gain" for r in self.claim.requirements) else ():
-                step.touched(on[s], route)
-            return None
-        found = {}
-        for (s, t), step in self.steps.items():
-            moving = moves[t]
-            line = None if moving is None else step.proved(on[s], moving, route)
-            if line is not None:
-                found[s, t] = line
-        return found if len(found) == len(self.steps) else None
+        self, searches: Mapping[Any, StepSearch], on: Mapping[str, int], moves: Mapping[str, list[int] | None]
+    ) -> dict[str, dict[Step, int]]:
+        """Gain and residual of every step, or way of several, by each route that has them for all."""
+        found: dict[str, dict[Step, int]] = {}
+        for route in self.routes:
+            if route == "split" and not self._contracts(route):
+                for (s, *_), x in searches.items() if any(r.kind == "gain" for r in self.claim.requirements) else ():
+                    x.touched(on[s], route)
+                continue
+            lines: dict[Step, int] = {}
+            for way, x in searches.items():
+                moving = moves[way[-1]]
+                line = None if moving is None else x.proved(on[way[0]], moving, route)
+                if line is not None:
+                    lines[way] = line
+            if len(lines) == len(searches):
+                found[route] = lines
+        return found
 
     def _contracts(self, route: str) -> bool:
         """Whether samples over the sets leave it open that the steps contract together."""
@@ -198,16 +212,22 @@ class GraphAttempt(Attempt):
         rng = np.random.default_rng(0)
         tried: list[tuple[tuple[int, float], int, str, Family]] = []
         for route in self.routes:
-            samples = {e: x.samples(self._around(x.before), rng, route) for e, x in self.steps.items()}
-            for n, family in enumerate(families(samples, room, self.claim.metric, weights)):
-                rank = self._by_samples(samples, family, regions)
+            single = {e: x.samples(self._around(x.before), rng, route) for e, x in self.steps.items()}
+            samples = single if self.claim.horizon == 1 else self._sampled(rng, route)
+            proposed = families(samples, room, self.claim.metric, weights)
+            if samples is not single:
+                proposed = chain(proposed, families(single, room, self.claim.metric, weights))
+            for n, family in enumerate(proposed):
+                rank = self._by_samples(samples, single, family, regions)
                 if rank is not None:
                     tried.append((rank, n, route, family))
         tried.sort(key=lambda x: x[:2])
         best: tuple[float, Family] | None = None
         for _, _, route, family in tried[:TRIED]:
             self._take(family)
-            size = self._size_of({e: x.pair(route) for e, x in self.steps.items()}, regions)
+            pairs = self._measured(self.walks, route)
+            alone = pairs if self.claim.horizon == 1 or regions else self._measured(self.steps, route)
+            size = self._size_of(pairs, None if regions else alone)
             if best is None or size < best[0]:
                 best, self.leading = (size, family), route
             if size < np.inf and (regions or len(tried) == 1 or size < 0.9):
@@ -221,23 +241,52 @@ class GraphAttempt(Attempt):
         return Domain("region", Fraction(0), spans[0], targets=spans)
 
     def _take(self, family: Family) -> None:
+        """Takes norms; unless the claim fixes them, in the unit in which each is at least the error of every state."""
         for s, x in self.stances.items():
             x.normed(family[s])
+        each = self.stances.values()
+        if len(next(iter(each)).obligations.states) == 1 or next(iter(each))._weights() is not None:
+            return
+        unit = max(x.norm.support(i) for x in each for i in range(len(x.norm.inverse)))  # proofs/several.md (5e)
+        for s, x in self.stances.items():
+            x.normed(in_unit(family[s], unit))
 
-    def _by_samples(self, samples: Mapping[Step, Samples], family: Family, regions: bool) -> tuple[int, float] | None:
+    def _sampled(self, rng: np.random.Generator, route: str) -> dict[tuple[str, str], Samples]:
+        """Of all ways of several steps between the same two stances together."""
+        found: dict[tuple[str, str], Samples] = {}
+        for way, x in self.walks.items():
+            here, ends = x.samples(self._around(x.before), rng, route), (way[0], way[-1])
+            known = found.setdefault(ends, here)
+            if known is not here:
+                jacobians = np.concatenate([known.jacobians, here.jacobians])
+                found[ends] = Samples(jacobians, np.concatenate([known.misses, here.misses]))
+        return found
+
+    def _measured(self, searches: Mapping[Any, StepSearch], route: str) -> Pairs:
+        """Gain and residual over the balls (estimates), of all ways between the same two stances the largest."""
+        found: dict[tuple[str, str], tuple[float, float]] = {}
+        for way, x in searches.items():
+            (k, e), known = x.pair(route), found.get((way[0], way[-1]), (0.0, 0.0))
+            found[way[0], way[-1]] = max(k, known[0]), max(e, known[1])
+        return found
+
+    def _by_samples(
+        self, samples: Mapping[tuple[str, str], Samples], single: Mapping[tuple[str, str], Samples], family: Family,
+        regions: bool,
+    ) -> tuple[int, float] | None:  # fmt: skip
         """Whether sets are kept and, then, how small the bounds are, by samples; None where the norm is none."""
         try:
             self._take(family)
         except Rejected:
             return None
         pairs = self._in_norms(samples)
-        size = self._size_of(pairs, regions)
+        size = self._size_of(pairs, None if regions else pairs if samples is single else self._in_norms(single))
         if size < np.inf:
             return 0, size
         found = bounds(pairs, list(self.stances))
         return (2, max(k for k, _ in pairs.values())) if found is None else (1, self._share(found))
 
-    def _in_norms(self, samples: Mapping[Step, Samples]) -> dict[Step, tuple[float, float]]:
+    def _in_norms(self, samples: Mapping[tuple[str, str], Samples]) -> Pairs:
         """Gain and residual of every step that samples show in the norms taken: from below."""
         pairs = {}
         for (s, t), x in samples.items():
@@ -253,13 +302,13 @@ class GraphAttempt(Attempt):
         """The largest share of its room that a bound takes."""
         return max(bound[s] * max(x.shares()) for s, x in self.stances.items())
 
-    def _size_of(self, pairs: Pairs, regions: bool) -> float:
-        """The largest share of its room that a bound takes; inf where the balls are not kept (estimates)."""
+    def _size_of(self, pairs: Pairs, single: Pairs | None) -> float:
+        """The largest share of its room that a bound takes; inf where single steps do not keep balls (estimates)."""
         found = bounds(pairs, list(self.stances))
         if found is None:
             return np.inf
         r = {s: to_float(x.domain.radius) for s, x in self.stances.items()}
-        if not regions and not all(k * r[s] + e <= SPARE * r[t] for (s, t), (k, e) in pairs.items()):
+        if single is not None and not all(k * r[s] + e <= SPARE * r[t] for (s, t), (k, e) in single.items()):
             return np.inf
         return self._share(found)
 
@@ -289,7 +338,7 @@ class GraphAttempt(Attempt):
         """Gain and residual of every step over balls of these radii, a little too large (estimates)."""
         for s, x in self.stances.items():
             x.domain = x._within(x.norm, Fraction(wanted[s]))
-        each = {e: x.pair(self.leading) for e, x in self.steps.items()}
+        each = self._measured(self.steps, self.leading)
         return {e: (k * (1 + 1e-6), y * (1 + 1e-6)) for e, (k, y) in each.items()}
 
     def _compared(
@@ -301,11 +350,11 @@ class GraphAttempt(Attempt):
         normed: dict[str, Basis] = {s: (x.norm.rows, x.norm.inverse) for s, x in self.stances.items()}
         for bases in [plain] if plain == normed else [plain, normed]:
             tables: dict[Step, tuple[int, int]] = {}
-            for (s, t), step in self.steps.items():
-                pair = step.tables(on[s], bases[s], bases[t], route)
+            for way, step in self.walks.items():
+                pair = step.tables(on[way[0]], bases[way[0]], bases[way[-1]], route)
                 if pair is not None:
-                    tables[s, t] = pair
-            if len(tables) == len(self.steps):
+                    tables[way] = pair
+            if len(tables) == len(self.walks):
                 moving = [n for s in self.stances for n in moves[s] or []]
                 self.writer.compared(invariant, tables, moving, bases, route)
 

@@ -260,7 +260,7 @@ class SeveralAttempt(Attempt):
         kind, _, after = proves.partition("@")
         rows = [[self._miss(s, int(after or 0))] for s in o.states]
         if kind == "slopes":
-            rows = [[o.slope(domain, s, x, int(after or 0)) for x in o.states] for s in o.states]
+            rows = [[self._entry(domain, s, x, int(after or 0)) for x in o.states] for s in o.states]
         elif kind == "split-slopes":
             rows = [[o.split_slope(domain, s, x) for x in o.states] for s in o.states]
         elif kind == "split-residuals":
@@ -272,6 +272,9 @@ class SeveralAttempt(Attempt):
             return Matrices(ready)
         names = [v.name for v in Matrices(ready).variables]
         return Matrices(ready, lambda x: self._into(x, names, domain, norm))
+
+    def _entry(self, domain: Domain, s: str, x: str, steps: int = 0) -> Obligation:
+        return self.obligations.slope(domain, s, x, steps)
 
     def _miss(self, s: str, steps: int = 0) -> Obligation:
         return self.obligations.miss(s, steps)
@@ -563,7 +566,12 @@ def scaled(p: Proposal) -> Proposal:
     proofs/several.md (5e)
     """
     norm = metric(p.kind, p.rows, p.inverse, len(p.inverse))
-    unit = Fraction(decimal_up(max(norm.support(i) for i in range(len(p.inverse))), DIGITS))
+    return in_unit(p, max(norm.support(i) for i in range(len(p.inverse))))
+
+
+def in_unit(p: Proposal, most: Fraction) -> Proposal:
+    """The same metric, so many times as large, rounded up."""
+    unit = Fraction(decimal_up(most, DIGITS))
     rows = tuple(tuple(x * unit for x in row) for row in p.rows)
     inverse = tuple(tuple(x / unit for x in row) for row in p.inverse)
     size = to_float(unit)

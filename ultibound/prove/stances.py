@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+from collections.abc import Sequence
 from contextlib import suppress
 
 import numpy as np
@@ -103,11 +104,13 @@ class StanceSearch(SeveralAttempt):
 
 
 class StepSearch(SeveralAttempt):
-    """The step from a stance to one that follows: Jacobians and misses in the norms of both."""
+    """The step from a stance to one that follows, or several: Jacobians and misses in the norms of first and last."""
 
     writer: StepWriter
 
-    def __init__(self, before: StanceSearch, after: StanceSearch, until: float, others: list[Encloser]) -> None:
+    def __init__(self, way: Sequence[StanceSearch], until: float, others: list[Encloser]) -> None:
+        before, after = way[0], way[-1]
+        self.part, self.way = ">".join(x.stance.name for x in way), [x.obligations.stance for x in way[1:]]
         self.claim, self.gap, self.watch = before.claim, before.gap, before.watch
         self.before, self.after, self.obligations = before, after, before.obligations
         graph, writer = self.obligations.graph, before.writer
@@ -115,8 +118,11 @@ class StepSearch(SeveralAttempt):
         self.ranges.flows, self.leaves, self.needed = before.ranges.flows, {}, 0
         self.targets, self.tabled = before.targets, dict[str, tuple[Tabled, Tabled]]()
 
+    def _entry(self, domain: Domain, s: str, x: str, steps: int = 0) -> Obligation:
+        return self.obligations.slope(domain, s, x, steps, self.way)
+
     def _miss(self, s: str, steps: int = 0) -> Obligation:
-        return self.obligations.miss(s, steps, self.after.obligations.stance)
+        return self.obligations.miss(s, steps, self.way)
 
     def _kept_by_gait(self, domain: Domain, s: str) -> Obligation:
         return self.obligations.split_residual(domain, s, self.after.obligations.stance)
@@ -143,7 +149,7 @@ class StepSearch(SeveralAttempt):
 
     def into(self, norm: int) -> None:
         """Takes the sets as they are now; `norm`: the line of the metric of the stance that follows."""
-        self.writer = StepWriter(self.before.writer, self.after.writer, norm)
+        self.writer = StepWriter(self.before.writer, self.part, norm)
         self.domain, self.norm = self.before.domain, self.before.norm
 
     def proved(self, on: int, moves: list[int], route: str) -> int | None:

@@ -48,6 +48,9 @@ PAGES = {
     "graph-bound": ("graph.md", "bounds along every allowed order of stances"),
     "graph-entries": ("graph.md", "entries of a step from one stance to the next"),
     "graph-componentwise": ("graph.md", "a bound for each state in each stance"),
+    "graph-orbit": ("graph.md", "a periodic orbit around a closed walk of stances"),
+    "graph-periodic": ("graph.md", "a periodic orbit of several states around a closed walk of stances"),
+    "graph-product": ("graph.md", "Jacobians around a closed walk of stances, whose product grows in every norm"),
 }
 GROUPS = (
     ("The stance", ("flow", "support", "growth", "signal-slope", "split-signal-slope")),
@@ -140,7 +143,7 @@ def shown(line: Mapping[str, Any]) -> str:
         return f"a value within [{rounded(ends['lower'], False)}, {rounded(ends['upper'], True)}] is taken"
     if line["rule"] in ("entries", "graph-entries"):
         return f"{len(ends)} ends of entries"
-    down = DOWN if line["rule"] != "periodic" else ends
+    down = DOWN if line["rule"] not in ("periodic", "graph-orbit", "graph-periodic") else ends
     pieces = [f"{n} {rounded(x, n not in down)}" for n, x in ends.items()]
     return ", ".join(pieces[:8]) + (f", and {len(pieces) - 8} more" if len(pieces) > 8 else "")
 

@@ -139,7 +139,7 @@ def _of_stances(found: Accepted) -> list[Block]:
             "The error of a stance is taken from its own target, that of the next from the target of the stance that "
             "follows. For every start in the certified set of a stance, every allowed order of stances and every "
             "course of the uncertain quantities within their ranges, each step leads into the set of the stance that "
-            "follows, and in the long run"
+            "follows."
         )
     ]
     items: list[Text] = []
@@ -150,7 +150,12 @@ def _of_stances(found: Accepted) -> list[Block]:
             if b is not None:
                 inner = bars(minus(symbol(s), symbol(s, "*")))
                 items.append((f"in the {name} stance ", equation(inner, "≤", figure(b)), f" {stance.states[s].unit}."))
-    return [*blocks, Items(tuple(items)), said("Gains multiplied around every cycle of allowed steps are below 1.")]
+    if not items:
+        return [*blocks, said("No bound in the long run is proved.")]
+    many = claim.horizon
+    whose = f"Gains of {many} steps taken together, " if many > 1 else "Gains "
+    cycles = said(f"{whose}multiplied around every cycle of allowed steps{',' if many > 1 else ''} are below 1.")
+    return [*blocks, said("In the long run"), Items(tuple(items)), cycles]
 
 
 def for_a_paper(found: Accepted) -> list[Block]:
