@@ -33,6 +33,7 @@ class Case:
     low: dict[str, Any]
     high: dict[str, Any]
     moving: bool
+    horizon: int
 
 
 @dataclass
@@ -147,6 +148,7 @@ def drawn(seed: int, horizon: int = 1) -> Case:
         low,
         high,
         moving,
+        horizon,
     )
 
 
@@ -221,6 +223,7 @@ def simulated(case: Case, r: dict[str, Any], rng: np.random.Generator, tally: Ta
             x[: WALKS // 4] = goal[: WALKS // 4]
             x[: WALKS // 4, 0] += np.where(rng.random(WALKS // 4) < 0.5, -0.5, 0.5)
         bias = rng.standard_normal((WALKS, n))
+        past = list[tuple[str, Any]]()
         for k in range(STEPS):
             tally.walked += WALKS
             inside(case, r, stance, x, w[:, 2])
@@ -239,8 +242,9 @@ def simulated(case: Case, r: dict[str, Any], rng: np.random.Generator, tally: Ta
             if case.moving:
                 w = w.copy()
                 w[:, 2] = np.clip(w[:, 2] + rng.choice([-0.01, 0.0, 0.01], WALKS), -0.05, 0.05)
-            if r["set"] is not None:
-                paired(r, stance, after, error, x - case.aim[after](w[:, 2]))
+            past = [*past[1 - case.horizon :], (stance, error)] if case.horizon > 1 else [(stance, error)]
+            if r["set"] is not None and len(past) == case.horizon:
+                paired(r, *past[0], after, x - case.aim[after](w[:, 2]))
             stance = after
             if not np.isfinite(x).all() or np.abs(x).max() > 1e6:
                 return False, far
@@ -249,8 +253,8 @@ def simulated(case: Case, r: dict[str, Any], rng: np.random.Generator, tally: Ta
     return bool(max(f.max() for f in far.values()) < 1.0), far
 
 
-def paired(r: dict[str, Any], before: str, after: str, error: Any, next_: Any) -> None:
-    """Every route's gain and residual bound the error after a step, in the norms of both stances."""
+def paired(r: dict[str, Any], before: str, error: Any, after: str, next_: Any) -> None:
+    """Every route's gain and residual bound the error after a step, or a horizon, in the norms of both stances."""
     sizes = [norm_of(r["stances"][s]["metric"], e) for s, e in ((before, error), (after, next_))]
     for route, pair in r["routes"].items():
         k, eps = (float(Fraction(pair[x]["upper"])) for x in ("gain", "residual"))
