@@ -463,7 +463,7 @@ def blown(rng: random.Random) -> Walk:
     """Gusts against trays whose height profile follows the speed: what a gust does follows the state."""
     gust = {"gust": Quantity(round(rng.uniform(-0.6, -0.2), 2), 0.5, within=True)}
     found = library(rng, ["-0.4", "0.5", "1.2"], ["0.36", "0.44"], "v", 0.03) | {"correction": ""}
-    return pendulum(rng, **found, period=Quantity(0.38, 0.39), uncertain=gust, added=" + gust")
+    return pendulum(rng, **found, period=Quantity(0.38, 0.383), uncertain=gust, added=" + gust")
 
 
 def fading(rng: random.Random) -> Walk:
@@ -478,7 +478,7 @@ def swayed(rng: random.Random) -> Walk:
     """Two continuous states that signals move, and both of which the next state rests on."""
     define = {"foot": "0.16*v + 0.1*(v - v_cmd)"}
     rate = {"x": f"xd + {num(rng.uniform(0, 0.1))}*gust", "xd": f"(14 + {num(rng.uniform(-3, 3))}*v)*x + gust"}
-    uncertain = {"T": Quantity(0.38, 0.4), "v_cmd": HELD, "gust": Quantity(-0.3, 0.3, within=True)}
+    uncertain = {"T": Quantity(0.38, 0.385), "v_cmd": HELD, "gust": Quantity(-0.3, 0.3, within=True)}
     start = {"x": "-foot", "xd": "0.98*v"}
     return Walk((-0.3, 1.1), uncertain, define, start, rate, "T", "xd + 0.1*v*x", "v_cmd")
 
