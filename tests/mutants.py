@@ -290,6 +290,7 @@ EQUIVALENT: dict[Key, str] = {
     ("matrices", "definite", "(pivot * x - first * y) // before", "-(-(pivot * x - first * y) // before)"):
         "every division is exact: what is divided is a minor times the pivot before (proofs/matrix.md (4))",
     ("matrices", "whole", "unit // x.denominator", "-(-unit // x.denominator)"): "a common multiple of all denominators",
+    ("inequality", "Inequality.shown", "x + sign * y", "x - sign * y"): "both signs are taken",
     ("attracting", "polytope", "comb(len(rows), states) * 2 ** states > MOST", "comb(len(rows), states) * 2 ** states >= MOST"):
         "of two to six states and up to 64 rows there are never exactly so many choices",
     ("attracting", "inverted", "(pivot[k] * x - row[k] * y) // before", "-(-(pivot[k] * x - row[k] * y) // before)"):

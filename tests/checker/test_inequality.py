@@ -135,6 +135,29 @@ def turn_of(turn: Any) -> Any:
 
 
 @question
+def roundings_are_allowed_for(i: Any, m: Any) -> None:
+    """In whole units of 2^-80: what every rounded matrix loses is given back to the rest, a diagonal is rounded up."""
+    one, unit = norm(m, "ellipsoid", matrix([1])), Q(1, 2**80)
+
+    def shown(of: Any, units: int, xi: Q = Q(1), eta: Q = Q(1)) -> bool:
+        return bool(i.Inequality(one, one, (xi,), (eta,), units * unit).holds(of))
+
+    # no rest, no slope: 2 given back, 1 for each block, 1 for the complement, and what is left is positive
+    for n in (0, 1, 3, 8):
+        still = leaf(m, nothing(1, 1), [nothing(1, 1)] * n)
+        assert shown(still, 5 + n) and not shown(still, 4 + n), n
+    # each is rounded down to 0, and is nearly a unit: longer together than n + 1 units
+    almost = matrix([unit * (1 - Q(1, 2**20))])
+    for n in (0, 1, 3, 8):
+        long = leaf(m, almost, [almost] * n, almost)
+        assert shown(long, 5 + n) and not any(shown(long, k) for k in range(5 + n)), n
+    # a rest of 1 + 2 units and a = 9/2, then b = 9/2: up to 5; the one that comes first has no complement
+    whole = leaf(m, nothing(1, 1), [], matrix([unit]))
+    assert shown(whole, 8, Q(3), Q(2)) and not shown(whole, 7, Q(3), Q(2))
+    assert shown(whole, 7, Q(2), Q(3)) and not shown(whole, 6, Q(2), Q(3))
+
+
+@question
 def what_does_not_fit(i: Any, m: Any) -> None:
     one = norm(m, "ellipsoid", diagonal(1, 1))
     good = i.Inequality(one, one, ONES, ONES, Q(2))
