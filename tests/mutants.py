@@ -235,6 +235,9 @@ EQUIVALENT: dict[Key, str] = {
     ("ranges", "Evaluator.derivatives", "n > 1", "n >= 1"): "a power that is a term has an exponent of at least 2",
     ("ranges", "Evaluator.derivatives", "n > 2", "n >= 2"): "the power 0 of an interval is 1",
     ("ranges", "Evaluator.cell", "len(corners) // 2", "-(-len(corners) // 2)"): "a cell has an even number of corners",
+    **{("ranges", "Evaluator.remembered", f"len({x}) > REMEMBERED", f"len({x}) {sign} REMEMBERED"):
+       "how many jets are remembered to save time changes none of them: what is forgotten is evaluated anew"
+       for x in ("self.met", "known") for sign in (">=", "<=")},
     ("forms", "face", "side > 0", "side >= 0"): "a side is 1 or -1",
     ("forms", "face", "side > 0", "side >= 0 (2)"): "a side is 1 or -1",
     ("forms", "second_order", "j > i", "j >= i"): "j == i is the branch before",

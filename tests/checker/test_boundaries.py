@@ -3434,6 +3434,25 @@ def limits_of_arithmetic(checker: Any) -> None:
     assert a.sin((1 << 24 + reals.LARGEST,) * 2)[1] <= 1 << 24
 
 
+@unit
+def corners_of_ranges_met_before(checker: Any) -> None:
+    """Smooth terms alone are remembered: |v| + v + u, of v in [-1, 1/2], meets both branches whatever u is.
+
+    About v = -1/4 on the one branch it would be u alone, and never 1 more.
+    """
+    terms = checker.terms.Terms()
+    u, v = terms.put("variable", (), "u"), terms.put("variable", (), "v")
+    root = terms.put("add", (terms.put("add", (terms.put("abs", (v,)), v)), u))
+    e = checker.ranges.Evaluator(terms, root, "", ["u", "v"], (), checker.exact.Exact())
+    for low in (0, 2, 0):
+        box = [(Q(low), Q(low + 1)), (Q(-1), Q(1, 2))]
+        for form in "dcms":
+            ends = checker.forms.enclose(e, box, form)
+            assert ends[0] <= low and ends[1] >= low + 2, (low, form, ends)
+        e.run(box, True)
+        assert set(e.sides.values()) == {(0, 1)}, (low, e.sides)
+
+
 # proved though false: to be moved among the cases when mended
 
 

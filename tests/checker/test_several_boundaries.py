@@ -821,6 +821,11 @@ def affine_parts(checker: Any) -> None:
     assert found.rest == ((1, 0), (3, 1)), found
     slopes = dict(zip(names, found.slopes, strict=True))
     assert slopes == {"x": ((0, Q(1, 2)), (0, 0)), "y": ((1, 0), (0, 0)), "p": ((1, 0), (0, 0))}, slopes
+    # what falls by a variable is told apart as what rises is
+    names, found = leaf("-x*y - p*x**2", "-p*x*y/1", box, "c")
+    assert found.centre == ((-2, -Q(1, 2)), (0, 0)) and found.rest == ((1, 0), (3, 1)), found
+    falling = dict(zip(names, found.slopes, strict=True))
+    assert falling == {n: tuple(tuple(-x for x in row) for row in g) for n, g in slopes.items()}, falling
     names, found = leaf("x*y + p*x**2", "p*x*y/1", box, "d")
     assert found.centre == ((2, Q(1, 2)), (0, 0)) and found.rest == ((3, Q(1, 2)), (3, 1)) and found.slopes == (), found
     # p x over x as wide as it is: p about 0

@@ -94,6 +94,14 @@ def two_steps() -> None:
     reject("two steps, and another way", but(good, "claim text", text.replace('then = "right"', 'then = ["right", "left"]')), "proof line 11", "not shown to stay in the region")
 
 
+def corrections_of_two_steps() -> None:
+    """Where a correction is named, another route may show a smaller gain, but for the route slope alone."""
+    asked = ["gain < 3/8", "residual < 7/32"]
+    for top, verdict in (('correction = ["f"]', "undecided"), ('route = "slope"\ncorrection = ["f"]', "refuted"), ('route = "slope"', "refuted"), ("", "refuted")):
+        names = '\n[define]\nf = "x"' if "correction" in top else ""
+        judged(f"two steps, a correction {top}", twice(asked, f"{top}{names}").found("region", list(zip(asked, (verdict, "refuted"), strict=True))))
+
+
 def more_ways() -> None:
     """Any order: every way counts, in the order in which stances and what follows them are named."""
     spans = '["-13/8", "13/8"]'
@@ -254,6 +262,7 @@ def what_is_not_taken_together(checker: Any) -> None:
 
 
 two_steps()
+corrections_of_two_steps()
 more_ways()
 on_balls()
 moving()
