@@ -29,7 +29,8 @@ from .lines import IRRATIONAL, RATIONAL_CELLS, RATIONAL_TERMS, Writer, downward,
 DIGITS = 25
 MOST_EXACT = 8  # rows of a comparison solved in rationals
 SLACK = 1e-8
-FAR, FURTHER = 0.2, 10  # shares of what a search found: by which a norm may be larger, and how fast it is tried
+FAR, FURTHER = 0.02, 10  # shares of what a search found: by which a norm may be larger, and how fast it is tried
+CLOSE = 2e-3  # and how near the least of these one comes
 NEARER = 1 - 1e-12
 
 
@@ -129,29 +130,43 @@ class NormWriter(Writer):
     ) -> int:  # fmt: skip
         """The norm of a matrix over the set, as its leaves show it; of an ellipsoid it starts from what it is near."""
         found = self._inequality(proves, on, leaves, near, scales) if scales is not None and near > 0 else None
-        if found is not None:
-            witness = {"bits": bits, "scales": [[str(x) for x in each] for each in (found.xi, found.eta)]}
-            concludes = {"norm": str(found.bound)}
-            return self._measured("matrix", proves, on, witness | {"trees": list(trees)}, concludes, None)
+        least = "" if found is None else str(found.bound)
+        if found is None or not sloped(proves):  # the corners of a vector are soon gone through
+            corners = self._by_corners(proves, on, leaves, near)
+            if found is None or Fraction(corners) <= found.bound:
+                found, least = None, corners
+        written = [] if found is None else [[str(x) for x in each] for each in (found.xi, found.eta)]
+        witness = {"bits": bits, "scales": written, "trees": list(trees)}
+        return self._measured("matrix", proves, on, witness, {"norm": least}, None)
+
+    def _by_corners(self, proves: str, on: int, leaves: list[Leaf], near: float) -> str:
+        """The norm over all leaves, their corners gone through one by one."""
         _, norm = self.seen(proves, on)
         most = Fraction(near * (1 - SLACK)) if norm.kind == "ellipsoid" and np.isfinite(near) else Fraction(0)
         for leaf in leaves:
             most = norm_over(norm, leaf, most)
-        witness = {"bits": bits, "scales": [], "trees": list(trees)}
-        return self._measured("matrix", proves, on, witness, {"norm": upward(most)}, None)
+        return upward(most)
 
     def _inequality(self, proves: str, on: int, leaves: list[Leaf], near: float, scales: Scales) -> Inequality | None:
         """The least inequality tried that holds on all leaves; None where that would be far from what was found."""
         before, after = self.ends(on)
         xi, eta = (tuple(Fraction(f"{x:.4g}") for x in each) for each in scales)
-        step = SLACK
-        while step < FAR:
+
+        def tried(step: float) -> Inequality | None:
             bound = Fraction(upward(Fraction(near * (1 + step))))
-            found = Inequality(before if sloped(proves) else None, after, xi, eta, bound)
-            if all(found.holds(leaf) for leaf in leaves):
-                return found
+            x = Inequality(before if sloped(proves) else None, after, xi, eta, bound)
+            return x if all(x.holds(leaf) for leaf in leaves) else None
+
+        step, found = SLACK, tried(SLACK)
+        while found is None and step < FAR:
             step *= FURTHER
-        return None
+            found = tried(step)
+        low, high = step / FURTHER, step
+        while found is not None and high > CLOSE and high - low > CLOSE:  # what the search found was too little
+            step = (low + high) / 2
+            nearer = tried(step)
+            found, low, high = (found, step, high) if nearer is None else (nearer, low, step)
+        return found
 
     def entries(
         self, proves: str, trees: Sequence[str], bits: int, on: int, leaves: list[Leaf], basis: tuple[Matrix, Matrix],

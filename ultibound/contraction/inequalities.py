@@ -45,27 +45,42 @@ def blocks(rows: Floats, right: Floats, rest: Floats, scales: Scales) -> Floats:
     return found
 
 
-def greatest(rows: Floats, right: Floats, centre: Floats, slopes: Floats, rest: Floats, scales: Scales) -> Greatest:
-    """Estimates, by corners that the eigenvectors point to: seldom too small, and then by little.
-
-    centre, rest (boxes, n, c); slopes (boxes, variables, n, c); all finite.
-    """
-    c = right.shape[1]
+def told_apart(slopes: Floats, rest: Floats, scales: Scales) -> tuple[Floats, Floats]:
+    """Slopes (boxes, variables, n, c), all but a box's largest 0, and the rest (boxes, n, c) with the others."""
     weight = np.einsum("i,bkij,j->bk", scales[1], np.abs(slopes), scales[0])
     least = np.argsort(-weight, axis=1, kind="stable")[:, MOST_SLOPES:]
     given = np.zeros_like(weight)
     np.put_along_axis(given, least, 1.0, axis=1)
-    rest = rest + np.einsum("bk,bkij->bij", given, np.abs(slopes))
-    told = rows @ slopes @ right * (1 - given)[:, :, None, None]
+    more: Floats = rest + np.einsum("bk,bkij->bij", given, np.abs(slopes))
+    return slopes * (1 - given)[:, :, None, None], more
+
+
+def greatest(
+    rows: Floats, right: Floats, centre: Floats, slopes: Floats, rest: Floats, scales: Scales, first: Floats | None
+) -> Greatest:
+    """Estimates, by corners that the eigenvectors point to: never too large; too small by a fifth, perhaps, where slopes
+    are as large as the centre, and by little where they are small beside it, as on the leaves that a search ends with.
+
+    centre, rest (boxes, n, c); slopes (boxes, variables, n, c); all finite. `first`: signs (boxes, variables) to start
+    from as well; where the centre is 0 no eigenvector points anywhere.
+    """
+    c = right.shape[1]
+    signs = np.ones(slopes.shape[:2])
+    slopes, rest = told_apart(slopes, rest, scales)
+    told = rows @ slopes @ right
     still = blocks(rows, right, rest, scales)
     still[:, c:, :c] = rows @ centre @ right
-    value, signs = np.full(len(centre), -np.inf), np.ones(weight.shape)
+    value = np.full(len(centre), -np.inf)
     best = np.zeros((len(centre), c + len(rows)))
     _, vectors = np.linalg.eigh(still)
-    for start in range(1, min(STARTS, c + len(rows)) + 1):
-        z = vectors[:, :, -start]
+
+    def aligned(z: Floats) -> Floats:
+        found: Floats = np.where(np.einsum("bi,bkij,bj->bk", z[:, c:], told, z[:, :c]) >= 0, 1.0, -1.0)
+        return found
+
+    starts = [aligned(vectors[:, :, -k]) for k in range(1, min(STARTS, c + len(rows)) + 1)]
+    for t in [*starts, *([] if first is None else [first])]:
         for _ in range(TURNS):
-            t = np.where(np.einsum("bi,bkij,bj->bk", z[:, c:], told, z[:, :c]) >= 0, 1.0, -1.0)
             here = still.copy()
             here[:, c:, :c] += np.einsum("bk,bkij->bij", t, told)
             values, turned = np.linalg.eigh(here)  # of the lower triangle
@@ -73,6 +88,7 @@ def greatest(rows: Floats, right: Floats, centre: Floats, slopes: Floats, rest: 
             better = values[:, -1] > value
             value = np.where(better, values[:, -1], value)
             signs, best = np.where(better[:, None], t, signs), np.where(better[:, None], z, best)
+            t = aligned(z)
     return Greatest(value, signs, np.abs(best[:, :c] @ right.T), np.abs(best[:, c:] @ rows))
 
 

@@ -19,7 +19,7 @@ from ..bounding.evaluate import Runner, to_float
 from ..bounding.intervals import Floats
 from ..bounding.search import SHARE, Effort
 from ..claim.obligations import Obligation, Variable, together
-from .inequalities import Scales, fitted, greatest, plain
+from .inequalities import Scales, fitted, greatest, plain, told_apart
 
 BATCH = 64
 BEST = 4  # of so many leaves, the worst is bisected at once
@@ -147,11 +147,16 @@ def seen(norm: Norm, a: Affine, scales: Scales | None) -> tuple[Floats, Floats, 
     gains = worth(norm, a)
     if scales is None:
         return *over_boxes(norm, a), gains
-    found, where = np.full(len(a.rest), np.inf), np.ones(a.lost.shape[:2])
+    found, where, first = np.full(len(a.rest), np.inf), np.ones(a.lost.shape[:2]), None
+    if norm.inverse is None:  # a vector: its corners are measured one by one as well, and the lesser bound counts
+        found, where = over_boxes(norm, a)
+        first = where
     good = np.isfinite(a.rest).all(axis=(1, 2)) & np.isfinite(a.centre).all(axis=(1, 2))
     if good.any():
-        over = greatest(norm.rows, norm.right, a.centre[good], a.slopes[good], a.rest[good], scales)
-        found[good], where[good] = over.value, over.signs
+        over = greatest(norm.rows, norm.right, a.centre[good], a.slopes[good], a.rest[good], scales,
+            None if first is None else first[good],
+        )  # fmt: skip
+        found[good], where[good] = np.minimum(found[good], over.value), over.signs
         with np.errstate(invalid="ignore"):
             turned = np.einsum("bi,bkij,bj->bk", over.y, a.lost[good], over.x)
         gains[good] = np.where(np.isnan(turned), np.inf, turned)
@@ -159,7 +164,7 @@ def seen(norm: Norm, a: Affine, scales: Scales | None) -> tuple[Floats, Floats, 
 
 
 def over_boxes(norm: Norm, a: Affine) -> tuple[Floats, Floats]:
-    """Of the largest magnitude: upper estimates of the norm, and the signs of the corner it is largest at."""
+    """By all corners: upper estimates of the norm, and signs of the corner it is largest at; of lengths, of vectors."""
     boxes, count = a.lost.shape[:2]
     with np.errstate(invalid="ignore", over="ignore"):
         centre, slopes = norm.rows @ a.centre @ norm.right, norm.rows @ a.slopes @ norm.right
@@ -177,7 +182,7 @@ def over_boxes(norm: Norm, a: Affine) -> tuple[Floats, Floats]:
     for first in range(0, len(signs), step):
         some = signs[first : first + step]
         corners = centre[:, None] + np.einsum("sk,bkij->bsij", some, slopes[:, moving])
-        each = _rows(corners, rest)
+        each = _length(corners) if norm.round else _rows(corners, rest)
         best = np.argmax(each, axis=1)
         better = np.asarray(each[rows, best] > found)
         found = np.where(better, each[rows, best], found)
@@ -185,16 +190,19 @@ def over_boxes(norm: Norm, a: Affine) -> tuple[Floats, Floats]:
         chosen[:, moving] = some[best]
         where = np.where(better[:, None], chosen, where)
     if len(order) > len(moving):
-        _further(centre, slopes, where)
+        _further(norm, centre, slopes, where)
+    if norm.round:
+        found = found + np.sqrt(np.square(rest).sum(axis=(1, 2)))
     return np.where(np.isfinite(found), found, np.inf), where
 
 
-def _further(centre: Floats, slopes: Floats, where: Floats) -> None:
+def _further(norm: Norm, centre: Floats, slopes: Floats, where: Floats) -> None:
     """Signs of the variables that no corner tells apart: each the one that makes the norm larger."""
     here = centre + np.einsum("bk,bkij->bij", where, slopes)
     for k in np.flatnonzero(slopes.any(axis=(0, 2, 3))):
         still = where[:, k] == 0
-        sizes = [np.abs(here + sign * slopes[:, k]).sum(axis=2).max(axis=1) for sign in (1.0, -1.0)]
+        sides = [here + sign * slopes[:, k] for sign in (1.0, -1.0)]
+        sizes = [_length(x) if norm.round else np.abs(x).sum(axis=2).max(axis=1) for x in sides]
         sign = np.where(sizes[0] >= sizes[1], 1.0, -1.0)
         where[:, k] = np.where(still, sign, where[:, k])
         step = sign[:, None, None] * slopes[:, k]
@@ -322,11 +330,12 @@ def refit(
     """Scales for the worst of the leaves, where they do better over all of them; `upper` and `score` are then those."""
     worst = leaves[np.argmax(upper[leaves])]
     a = matrices.affine(low[worst][None], high[worst][None])
-    if not np.isfinite(upper[worst]) or not a.rest.any():
+    slopes, rest = told_apart(a.slopes, a.rest, scales)
+    if not np.isfinite(upper[worst]) or not rest.any():
         return scales
     _, where, _ = seen(norm, a, scales)
-    at = a.centre[0] + np.einsum("k,kij->ij", where[0], a.slopes[0])
-    found = fitted(norm.rows, norm.right, at, a.rest[0], scales)
+    at = a.centre[0] + np.einsum("k,kij->ij", where[0], slopes[0])
+    found = fitted(norm.rows, norm.right, at, rest[0], scales)
     tried = [
         seen(norm, matrices.affine(low[some], high[some]), found)
         for some in np.split(leaves, range(BATCH, len(leaves), BATCH))
