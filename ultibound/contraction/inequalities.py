@@ -58,8 +58,8 @@ def told_apart(slopes: Floats, rest: Floats, scales: Scales) -> tuple[Floats, Fl
 def greatest(
     rows: Floats, right: Floats, centre: Floats, slopes: Floats, rest: Floats, scales: Scales, first: Floats | None
 ) -> Greatest:
-    """Estimates, by corners that the eigenvectors point to: never too large; too small by a fifth, perhaps, where slopes
-    are as large as the centre, and by little where they are small beside it, as on the leaves that a search ends with.
+    """Estimates, by corners that the eigenvectors point to: never too large; too small by a fifth, perhaps, where
+    slopes are as large as the centre, and by little where they are small beside it, as on the last leaves of a search.
 
     centre, rest (boxes, n, c); slopes (boxes, variables, n, c); all finite. `first`: signs (boxes, variables) to start
     from as well; where the centre is 0 no eigenvector points anywhere.
@@ -79,6 +79,10 @@ def greatest(
         return found
 
     starts = [aligned(vectors[:, :, -k]) for k in range(1, min(STARTS, c + len(rows)) + 1)]
+    if told.shape[1]:  # and where the largest slope points to
+        heavy = still.copy()
+        heavy[:, c:, :c] += told[np.arange(len(told)), np.argmax(np.abs(told).sum(axis=(2, 3)), axis=1)]
+        starts.append(aligned(np.linalg.eigh(heavy)[1][:, :, -1]))
     for t in [*starts, *([] if first is None else [first])]:
         for _ in range(TURNS):
             here = still.copy()
