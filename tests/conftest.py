@@ -3,11 +3,13 @@
 from __future__ import annotations
 
 import gc
+from collections.abc import Iterator
 from fractions import Fraction
 from typing import Any
 
 import pytest
 
+from tests.remembered import lines_checked_once
 from ultibound.certificate.certificate import Certificate
 from ultibound.claim import parse_claim
 from ultibound.prove import prove
@@ -40,6 +42,13 @@ def objects_that_stay_are_not_gone_through_again() -> None:
     """What earlier modules keep would make every collection of garbage slow, and limits of time fail for that."""
     gc.collect()
     gc.freeze()
+
+
+@pytest.fixture(scope="module")
+def lines_verified_once() -> Iterator[None]:
+    """Of certificates that differ in one place; for a module that judges hundreds of them."""
+    with lines_checked_once():
+        yield
 
 
 def proved(text: str, settings: dict[str, str] | None = None, data: dict[str, str] | None = None) -> Certificate:

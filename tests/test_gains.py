@@ -3,14 +3,13 @@
 from __future__ import annotations
 
 import json
-from collections.abc import Callable, Iterator
+from collections.abc import Callable
 from fractions import Fraction
 from typing import Any
 
 import pytest
 
 from tests.published.test_published import PENDULUM, require
-from tests.remembered import lines_checked_once
 from tests.test_obligations import spelled_out
 from ultibound.certificate.certificate import Certificate
 from ultibound.checker import check, verified
@@ -123,13 +122,7 @@ def test_pieces_hold_what_requirements_over_ranges_of_their_own_rest_on(monkeypa
     assert ends(found["contracting"])[1] == Fraction("2.6666666666666666666") and found["best"]["value"] == "8/5"
 
 
-@pytest.fixture
-def checked_once() -> Iterator[None]:
-    with lines_checked_once():
-        yield
-
-
-@pytest.mark.usefixtures("checked_once")
+@pytest.mark.usefixtures("lines_verified_once")
 def test_a_certificate_of_an_interval_spoiled_in_one_place(monkeypatch: pytest.MonkeyPatch) -> None:
     """Every number of the interval, every piece and what it rests on, on a certificate as the search writes it."""
     monkeypatch.setattr(gains, "NEAR", Fraction(1, 20))

@@ -21,13 +21,13 @@ from typing import Any
 import pytest
 
 from tests.conftest import proved
-from tests.remembered import lines_checked_once
 from tests.stances import GAITS, HEIGHT, LIBRARY, PUSHING, stance
 from ultibound.checker import Verdict, check, verified
 from ultibound.checker.document import canonical, digest
 from ultibound.claim import parse_claim
 from ultibound.prove import Attempt
 
+pytestmark = pytest.mark.usefixtures("lines_verified_once")
 LONG = bool(os.environ.get("ULTIBOUND_LONG"))
 EACH_BYTES = 1 if LONG else 50  # of so many changed certificates one is read from its bytes
 EXAMPLES = Path(__file__).parents[1] / "ultibound" / "examples"
@@ -272,12 +272,6 @@ def sample(name: str) -> dict[str, Any]:
     if name == "saturated":
         text = text.replace("sharp_bound", "bound") + "[effort]\ngap = 0.02\n"
     return proved(text, data={"gaits.csv": (EXAMPLES / "gaits.csv").read_text()} if "gaits.csv" in text else {}).entries
-
-
-@pytest.fixture(scope="module", autouse=True)
-def lines_are_checked_once() -> Iterator[None]:
-    with lines_checked_once():
-        yield
 
 
 @pytest.fixture(

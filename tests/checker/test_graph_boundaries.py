@@ -6,7 +6,7 @@ less of it is refused.
 
 from __future__ import annotations
 
-from collections.abc import Iterator, Sequence
+from collections.abc import Sequence
 from fractions import Fraction as Q
 from functools import partial
 from types import SimpleNamespace
@@ -16,7 +16,6 @@ import pytest
 
 import ultibound.checker
 from tests.checker.test_boundaries import BASE, GONE, STEP, Draft, Entries, Questions, but, refuses
-from tests.remembered import lines_checked_once
 
 CASES = Questions()
 unit, accept, reject = CASES.unit, CASES.accept, CASES.reject
@@ -865,12 +864,7 @@ stepping_where()
 # fmt: on
 
 
-@pytest.fixture(scope="module", autouse=True)
-def lines_are_checked_once() -> Iterator[None]:
-    with lines_checked_once():
-        yield
-
-
+@pytest.mark.usefixtures("lines_verified_once")
 @pytest.mark.parametrize("name", CASES)
 def test_graph_boundary(name: str) -> None:
     CASES[name](ultibound.checker)
