@@ -8,7 +8,8 @@ from typing import TYPE_CHECKING
 from .results import greater
 
 if TYPE_CHECKING:
-    from .graph_outcomes import GraphResults, StanceResults
+    from .graph_outcomes import GraphResults
+    from .stance_outcomes import StanceResults
 
 
 def farthest(found: GraphResults, stance: str) -> dict[str, Fraction | None]:
