@@ -348,6 +348,35 @@ Proof.
   induction Ht as [|t Ht IH]; [eapply Rle_trans; [apply Down|apply Ld, (T n)]|].
   destruct (T t) as [A [Fo _]]. destruct (T (S t)) as [A' _]. eapply Rle_trans; [apply (Step _ _ IH)|now apply Dd].
 Qed.
+(** The first n steps of a trajectory, as far as they start in the regions. *)
+Definition steps_within (region : nat -> X -> Prop) (n : nat) (st : nat -> nat) (x : nat -> X) (h : nat -> H) : Prop :=
+  forall j, (j < n)%nat -> (forall i, (i <= j)%nat -> region (st i) (x i)) ->
+  (st j < stances)%nat /\ (st (S j) < stances)%nat /\ follows (st j) (st (S j)) = true /\ moves (h j) (h (S j)) /\
+  exists w, inW w /\ x (S j) = F (st j) (x j) w (h j).
+
+(* Runs (3): a run of n steps in the regions from one of the starts, its error at the end above c, refutes that in all such runs the error stays within c from n steps on. *)
+Theorem run_still_out (region : nat -> X -> Prop) (start : nat -> X -> H -> Prop) (c : R) (n : nat) st x h :
+  steps_within region n st x h -> (forall i, (i <= n)%nat -> region (st i) (x i)) -> start (st O) (x O) (h O) ->
+  c < size (st n) (x n) (h n) ->
+  ~ (forall t st x h, (n <= t)%nat -> steps_within region t st x h -> (forall i, (i <= t)%nat -> region (st i) (x i)) ->
+     start (st O) (x O) (h O) -> size (st t) (x t) (h t) <= c).
+Proof. intros T I S0 L A. specialize (A n st x h (le_n n) T I S0). lra. Qed.
+
+(* Runs (4): a run that ends outside of the region starts in no set that lies in the regions and is kept. *)
+Theorem run_leaves (region : nat -> X -> Prop) (set : nat -> X -> H -> Prop) (n : nat) st x h :
+  kept_on_steps set -> (forall a x h, set a x h -> region a x) -> steps_within region n st x h -> ~ region (st n) (x n) ->
+  ~ set (st O) (x O) (h O).
+Proof.
+  intros Kp I T Out S0. apply Out. apply (I _ _ (h n)).
+  assert (In : forall j, (j <= n)%nat -> forall i, (i <= j)%nat -> set (st i) (x i) (h i)).
+  { induction j as [|j IH]; intros Hj i Hi.
+    - replace i with O by lia. exact S0.
+    - destruct (Nat.eq_dec i (S j)) as [->|N]; [|apply IH; lia].
+      destruct (T j ltac:(lia)) as [A [B [E [Mv [w [Iw Ex]]]]]].
+      + intros q Hq. apply (I _ _ (h q)), IH; lia.
+      + rewrite Ex. apply (Kp (st j)); trivial. apply IH; lia. }
+  apply (In n); lia.
+Qed.
 End Stances.
 
 (* A product of gains around a cycle that is 1, not below: doubled in one stance, halved in the other, an error never falls below 1. *)

@@ -179,8 +179,10 @@ class GraphResults(Results):
             return self.inside(several)
         c = constant(r.constant, self.statement.values)
         if r.kind == "radius":
-            span = self.wide(several, r.state)
-            return verdict(span is not None and compared(r.relation, Span(span.lower, None), c), False, span)
+            span, means = self.wide(several, r.state), r.state is not None or self.fixed()
+            proved = span is not None and means and compared(r.relation, Span(span.lower, None), c)
+            out = min([y for x in several if (y := x.out.get(r.state)) is not None], default=None)
+            return verdict(proved, opposed(r.relation, Span(out, None), c), span)
         if r.kind == "push":
             spans = [self.pushed_through(x, r.state) if r.during else x.pushes[r.state] for x in several]
             span = least([x for x in spans if x is not None]) if spans and None not in spans else None
@@ -248,8 +250,9 @@ class GraphResults(Results):
 
     def wide(self, several: list[StanceResults], state: str | None) -> Span | None:
         """How far a start may be from the target, of a state or in the norm."""
-        spans = [x.radii[state] if state is not None else x.radius for x in several] if self.settled else [None]
-        return least([x for x in spans if x is not None]) if None not in spans else None
+        of_norm = [x.radius if self.settled else NOTHING for x in several]
+        span = least(of_norm if state is None else [x.radii[state] or NOTHING for x in several])
+        return None if span == NOTHING else span
 
     def pushed_through(self, x: StanceResults, s: str) -> Span | None:
         """proofs/stance.md (7): a push during a stance leads into the sets of those that may follow it."""
@@ -270,8 +273,11 @@ class GraphResults(Results):
                 wanted = self.below(goal, route)
                 count = None if wanted is None else self.count_of(levels, wanted, route)
                 counts += [] if count is None else [count]
-        span = Span(None, Fraction(min(counts))) if counts else None
-        return verdict(span is not None and compared(r.relation, span, c), False, span)
+        names, paths = [x.part for x in several], self.lines("graph-path", f"path[{r.state}]")
+        still = self.still_out([(n, x) for n, x in paths if x.walk[0] in names], start[0], end[1])
+        span = Span(still, Fraction(min(counts)) if counts else None)
+        proved = compared(r.relation, Span(None, span.upper), c)
+        return verdict(proved, opposed(r.relation, Span(still, None), c), None if span == NOTHING else span)
 
     def below(self, wanted: Levels, route: str) -> Levels | None:
         """Levels no higher that are mapped below themselves on every step."""

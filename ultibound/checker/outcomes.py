@@ -9,7 +9,7 @@ from typing import Any
 from .grammar import Ends, constant
 from .jacobians import OF_COMPARISON, OF_ROUTE
 from .matrices import Metric, dot
-from .results import NOTHING, Outcome, Results, Route, Span, compared, greater, less, opposed, verdict
+from .results import NOTHING, Outcome, Results, Route, Span, compared, greater, less, opposed, smaller, verdict
 from .rules import Proof, Rejected
 from .theorems import OWN, Variant, ends
 
@@ -53,6 +53,7 @@ class SeveralResults(Results):
         self.gain, self.residual, self.bound = self.slopes(self.reported), route.residual, route.bound
         self.push = None
         self.pushes = {s: self.pushed_along(s) for s in self.states}
+        self.out = {s: self.led_out(s) for s in self.states}
         self.radii = {s: self.radius_along(s) for s in self.states}
         numbered = enumerate(self.statement.requirements, 1)
         self.requirements = [self.required(n, r) for n, r in numbered if not variant.over or n == variant.over]
@@ -166,13 +167,14 @@ class SeveralResults(Results):
 
     def radius_along(self, s: str) -> Span | None:
         """How far a state may start from its target: a section of the set (proofs/several.md (5))."""
+        out = self.out[s]
         if not self.settled:
-            return None
+            return None if out is None else Span(None, out)
         if self.kind == "region":
             return self.edges[s]
         least, most = self.metric.unit(self.states.index(s))
         lower = None if self.radius.lower is None else self.radius.lower / most
-        return Span(lower, None if self.radius.upper is None else self.radius.upper / least)
+        return Span(lower, smaller(out, None if self.radius.upper is None else self.radius.upper / least))
 
     def pushed_along(self, s: str) -> Span | None:
         """What is left of the set along a state after settling: proofs/several.md (5)."""
@@ -225,8 +227,7 @@ class SeveralResults(Results):
             return self.elsewhere(number)
         c = constant(r.constant, self.statement.values)
         if r.kind == "radius":
-            span = self.radii[r.state]
-            return verdict(span is not None and compared(r.relation, Span(span.lower, None), c), False, span)
+            return self.wide_enough(r, c)
         if r.kind == "push":
             left = self.left_for(self.grown_to(r.state)) if r.during else None
             span = (None if left is None else Span(left, None)) if r.during else self.pushes[r.state]
@@ -247,6 +248,15 @@ class SeveralResults(Results):
         # in a metric the claim fixes, what is surely taken settles it; in another norm it might be less
         least = self.missed if self.stated() and r.kind == "residual" else None
         return verdict(proved, not self.any and opposed(r.relation, Span(None, least), c), found)
+
+    def wide_enough(self, r: Any, c: tuple[Fraction, Fraction]) -> Outcome:
+        """A radius along a state; or in the norm, which says nothing where that may be as large as one likes."""
+        span = self.radii[r.state] if r.state is not None else self.radius if self.settled else None
+        means = r.state is not None or self.stated()
+        proved = span is not None and means and compared(r.relation, Span(span.lower, None), c)
+        # R⁺ is that of one norm; a run that leaves the region does so whatever set a proof might choose
+        out = None if r.state is None else self.out[r.state]
+        return verdict(proved, opposed(r.relation, Span(out, None), c), span)
 
     def gained(self, r: Any, c: tuple[Fraction, Fraction]) -> Outcome:
         """Refuted only where no route is left that might have a smaller gain, in this norm or another."""
@@ -299,15 +309,17 @@ class SeveralResults(Results):
             wide = self.metric.support(i)
             first, last = start[1] * self.metric.unit(i)[1], end[0] / wide
             most = min((n for x in self.routes if (n := self.steps(x, first, last)) is not None), default=None)
-        span = None if most is None else Span(None, Fraction(most))
-        proved = most is not None and compared(r.relation, Span(None, Fraction(most)), c)
-        return verdict(proved, False, span)
+        upper = None if most is None else Fraction(most)
+        least = self.still_out(self.lines("path", f"path[{r.state}]"), start[0], end[1])
+        span = Span(least, upper)
+        proved = compared(r.relation, Span(None, upper), c)
+        return verdict(proved, opposed(r.relation, Span(least, None), c), None if span == NOTHING else span)
 
     def by_state(self) -> dict[str, dict[str, Span | None]]:
         found: dict[str, dict[str, Span | None]] = {}
         for s in self.states:
-            far = self.long_run(s)
-            found[s] = {"bound": far, "sharp_bound": far, "radius": self.radii[s], "push": self.pushes[s]}
+            far, radius = self.long_run(s), self.radii[s] if self.settled else None
+            found[s] = {"bound": far, "sharp_bound": far, "radius": radius, "push": self.pushes[s]}
         return found
 
     def targets(self) -> dict[str, Span]:

@@ -11,6 +11,7 @@ from .derive import Derivation, Domain, Meaning, Ranged
 from .exact import Exact
 from .flows import Flows
 from .jacobians import together
+from .motion import PHASE, supported
 from .numerals import Rejected, quantity
 from .ranges import Ends, Evaluator
 from .reals import Scaled
@@ -22,13 +23,14 @@ LONGEST = 1000
 class Pointwise:
     """The map and the target of every state, ready to be followed from points or narrow enclosures."""
 
-    def __init__(self, d: Derivation, a: Scaled | Exact, flows: Flows | None) -> None:
-        self.d, self.a, self.spans = d, a, variables_of(d)
-        steps, targets = meanings(d)
-        self.order = [v.name for v in together([*steps, *targets])]
-        self.step, self.target = (
+    def __init__(self, d: Derivation, a: Scaled | Exact, flows: Flows | None, timed: bool = False) -> None:
+        """`timed`: with the duration of a stance, which otherwise the set is shown to keep above 0."""
+        self.d, self.a, self.spans = d, a, variables_of(d, timed)
+        steps, targets, times = meanings(d, timed)
+        self.order = [v.name for v in together([*steps, *targets, *times])]
+        self.step, self.target, self.time = (
             [Evaluator(d.terms, m.root, "", self.order, d.statement.libraries, a, flows) for m in several]
-            for several in (steps, targets)
+            for several in (steps, targets, times)
         )
         self.held = {n for n, q in d.statement.uncertain.items() if q.held and n in self.spans}
 
@@ -38,11 +40,21 @@ class Pointwise:
             raise Rejected("steps: one value for each quantity that is not held, a step")
         return {n: valued(self.spans[n], held[n] if n in self.held else fresh[n]) for n in self.spans}
 
+    def kept(self, held: dict[str, Any]) -> dict[str, Ends]:
+        """What a witness states of what is held."""
+        return {n: valued(self.spans[n], held[n]) for n in sorted(self.held)}
+
     def centre(self, values: dict[str, Ends]) -> list[Ends]:
-        return self._run(self.target, dict.fromkeys(self.d.states, (Fraction(0), Fraction(0))) | values)
+        """The targets, which rest on what is held alone."""
+        return self._run(self.target, dict.fromkeys(self.order, (Fraction(0), Fraction(0))) | values)
 
     def after(self, states: list[Ends], values: dict[str, Ends]) -> list[Ends]:
         return self._run(self.step, dict(zip(self.d.states, states, strict=True)) | values)
+
+    def lasts(self, states: list[Ends], values: dict[str, Ends]) -> bool:
+        """Whether a stance, where it is `timed`, surely takes its time: proofs/stance.md (4)."""
+        times = self._run(self.time, dict(zip(self.d.states, states, strict=True)) | values)
+        return all(low > 0 for low, _ in times)
 
     def _run(self, evaluators: list[Evaluator], values: dict[str, Ends]) -> list[Ends]:
         box = [values[n] for n in self.order]
@@ -86,17 +98,19 @@ def starts_in(d: Derivation, domain: Domain, errors: list[Fraction], start: list
     return all(low <= x[0] and x[1] <= high for x, (low, high) in zip(start, regions, strict=True))
 
 
-def meanings(d: Derivation) -> tuple[list[Meaning], list[Meaning]]:
-    """The map and the target of each state."""
-    names = d.names()
+def meanings(d: Derivation, timed: bool = False) -> tuple[list[Meaning], list[Meaning], list[Meaning]]:
+    """The map and the target of each state; `timed`, and of a continuous stance: its duration."""
+    names, times = d.names(), list[Meaning]()
     found = [[d.over(names.of(f"{x}({s})")) for s in d.states] for x in ("next", "target")]
-    return found[0], found[1]
+    if timed and d.motion is not None:
+        times = [d.over(supported(names, d.motion, d.motion.duration, d.terms.put("variable", (), PHASE)))]
+    return found[0], found[1], times
 
 
-def variables_of(d: Derivation) -> dict[str, Ranged]:
+def variables_of(d: Derivation, timed: bool = False) -> dict[str, Ranged]:
     """What a round has to state values of; a signal that several states answer is constant."""
-    steps, targets = meanings(d)
-    found = {v.name: v for v in together([*steps, *targets])}
+    steps, targets, times = meanings(d, timed)
+    found = {v.name: v for v in together([*steps, *targets, *times])}
     for name, (_, inside) in d.signals(set(found)).items():
         found[name] = replace(found[name], inside=inside)
     return {n: v for n, v in found.items() if n not in d.states}

@@ -71,7 +71,7 @@ class Results:
         centre = proof.lines[ball.uses[0]].concludes
         asked = self.settled or any(r.kind == "radius" for r in self.statement.requirements)
         self.centre, self.edge = Span(centre["lower"], centre["upper"]), self.reach() if asked else None
-        self.radius = Span(ball.concludes["radius"], self.edge)
+        self.radius = Span(ball.concludes["radius"], smaller(self.edge, self.led_out(self.state)))
         self.kind, self.whole = self.set_found(invariant if self.settled else None, ball)
         orbit = self.one("orbit", "orbit")
         orbit = orbit if self.lasting else None
@@ -355,9 +355,9 @@ class Results:
             return self.settles()
         c = constant(r.constant, self.statement.values)
         if r.kind == "radius":
-            span = self.radius if self.settled else Span(None, self.edge)
-            return verdict(compared(r.relation, Span(span.lower, None) if self.settled else NOTHING, c),
-                           opposed(r.relation, Span(self.edge, None), c), span)  # fmt: skip
+            span = self.radius if self.settled else Span(None, self.radius.upper)
+            return verdict(compared(r.relation, Span(span.lower, None), c),
+                           opposed(r.relation, Span(span.upper, None), c), span)  # fmt: skip
         if r.kind == "gain":
             return self.gained(r, c)
         if r.kind == "push":
@@ -419,15 +419,26 @@ class Results:
         most: int | None = None
         if self.settled and less(start[1], self.radius.lower, equal=True):
             most = min((n for x in self.routes if (n := self.steps(x, start[1], end[0])) is not None), default=None)
-        least: Fraction | None = None
-        paths = [(x.concludes["steps"] + 1, n) for n, x in self.lines("path", "path")
-                 if self.lasting and x.concludes["from"] <= start[0] and x.concludes["distance"] > end[1]]  # fmt: skip
-        if paths:
-            least, line = max(paths)
-            self.needed.add(line)
+        least = self.still_out(self.lines("path", "path") if self.lasting else [], start[0], end[1])
         span = Span(least, None if most is None else Fraction(most))
         proved = most is not None and compared(r.relation, Span(None, Fraction(most)), c)
         return verdict(proved, opposed(r.relation, Span(None, least), c), None if span == NOTHING else span)
+
+    def still_out(self, paths: list[tuple[int, Line]], start: Fraction, end: Fraction) -> Fraction | None:
+        """The least number of steps that paths from within `start` leave: at their ends the error is above `end`."""
+        return self.surely((x.concludes["steps"] + 1, n) for n, x in paths
+                           if x.concludes["from"] <= start and x.concludes["distance"] > end)  # fmt: skip
+
+    def led_out(self, state: str) -> Fraction | None:
+        """The least error of a state from which a run leaves the region, the others on target: proofs/orbit.md (4)."""
+        return self.nearest_out(self.lines("escape", f"escape[{state}]"))
+
+    def nearest_out(self, escapes: list[tuple[int, Line]]) -> Fraction | None:
+        least = min(((x.concludes["from"], n) for n, x in escapes), default=None)
+        if least is None:
+            return None
+        self.needed.add(least[1])
+        return least[0]
 
     def steps(self, name: str, error: Fraction, wanted: Fraction) -> int | None:
         """Steps by one route, horizon by horizon: proofs/horizon.md (4)."""
@@ -520,6 +531,11 @@ def far(span: Span) -> Fraction | None:
 def greater(a: Fraction | None, b: Fraction | None) -> Fraction | None:
     """The larger of two lower ends, as far as known."""
     return max((x for x in (a, b) if x is not None), default=None)
+
+
+def smaller(a: Fraction | None, b: Fraction | None) -> Fraction | None:
+    """The smaller of two upper ends, as far as known."""
+    return min((x for x in (a, b) if x is not None), default=None)
 
 
 def less(a: Fraction | None, b: Fraction | None, equal: bool = False) -> bool:

@@ -22,6 +22,7 @@ from .model import Statement
 from .numerals import Rejected, quantity
 from .ranges import Evaluator
 from .reals import Undefined
+from .runs import running, walking
 from .several import concluded
 from .squares import squares
 from .theorems import THEOREMS, Line, Piece, Variant, parted, shells
@@ -44,6 +45,7 @@ SHAPES: dict[str, tuple[tuple[str, ...], tuple[str, ...] | None]] = {
     "curve": ((), ("gain", "residual", "sharp")),
     "orbit": (("bits", "held", "start", "steps"), ("distance", "highest", "lowest")),
     "path": (("bits", "held", "start", "steps"), ("distance", "from", "steps")),
+    "escape": (("bits", "held", "start", "steps"), ("from",)),
     "ultimate-bound": ((), ("bound",)),
     "metric": (("inverse", "kind", "rows"), ()),
     "matrix": (("bits", "scales", "trees"), ("norm",)),
@@ -61,6 +63,8 @@ SHAPES: dict[str, tuple[tuple[str, ...], tuple[str, ...] | None]] = {
     "graph-componentwise": (("b", "p"), None),  # one a state of each stance
     "graph-orbit": (("bits", "held", "stances", "start", "steps"), None),  # one a stance on the way
     "graph-periodic": (("bits", "held", "stances", "start", "steps"), None),  # one a state of each stance on the way
+    "graph-path": (("bits", "held", "stances", "start", "steps"), ("distance", "from", "steps")),
+    "graph-escape": (("bits", "held", "stances", "start", "steps"), ("from",)),
     "graph-product": (("bits", "held", "points", "power", "stances"), ("lower",)),
     "product": (("bits", "points", "power"), ("lower",)),
     "gains": (("gain", "lower", "upper"), ()),
@@ -149,6 +153,7 @@ class Proof:
             d, g = self.about(variant, part), self.stanced(variant)
             if g is not None and (
                 one := around(g, part, rule, proves, used, witness, claimed)
+                or walking(g, part, rule, proves, used, witness, claimed)
                 or stepping(g, part, rule, proves, used, witness, claimed)
             ):
                 line = replace(one, uses=tuple(uses))
@@ -168,6 +173,8 @@ class Proof:
             elif self.graph is None and rule == "attracting":
                 line = replace(attracting(d, proves, used, witness, claimed), uses=tuple(uses))
                 self.leaves += line.leaves
+            elif self.graph is None and (run := running(d, rule, proves, used, witness, claimed)) is not None:
+                line = replace(run, uses=tuple(uses))
             elif self.graph is None and (about := concluded(d, rule, proves, used, witness, claimed)) is not None:
                 line = replace(about, uses=tuple(uses))
                 self.leaves += about.leaves

@@ -144,7 +144,7 @@ def concluded(
         return replace(line, domain=invariant_region(d, proves, used))
     if several and rule in OF_ROUTE:
         return replace(line, domain=pair(d, rule, proves, used, claimed))
-    if several and rule in ("sector", "curve", "shells", "orbit", "path"):
+    if several and rule in ("sector", "curve", "shells", "orbit"):
         raise Rejected(f"{rule}: known for a single state only")
     return None
 

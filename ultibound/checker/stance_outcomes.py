@@ -21,6 +21,7 @@ class StanceResults(SeveralResults):
 
     def __init__(self, whole: GraphResults, graph: Graph, name: str, kept: dict[str, Domain] | None) -> None:
         self.proof, self.variant, self.part, self.needed = whole.proof, whole.variant, name, set[int]()
+        self.all = whole
         self.derivation = graph.stances[name]
         self.statement, self.states = self.derivation.statement, self.derivation.states
         self.state, self.any = self.states[0], self.statement.shrink
@@ -61,7 +62,13 @@ class StanceResults(SeveralResults):
         """What the sets of all stances together are."""
         self.kind, self.whole, self.settled, self.partial = kind, whole, settled, partial
         self.edges = {s: self.reached(s) for s in self.states if kind == "region"}
+        self.out = {s: self.led_out(s) for s in self.states}
         self.radii = {s: self.radius_along(s) for s in self.states}
+
+    def led_out(self, state: str) -> Fraction | None:
+        """By runs through stances that start in this one."""
+        lines = self.all.lines("graph-escape", f"escape[{state}]")
+        return self.nearest_out([(n, x) for n, x in lines if x.walk[0] == self.part])
 
     def in_norm(self) -> Fraction | None:
         """The least bound in the norm of the stance."""

@@ -69,8 +69,8 @@ class Linear:
 def walks(maps: Mapping[str, Map], then: Mapping[str, Sequence[str]], slack: float, until: float = inf) -> list[Around]:
     """For each state in each stance the walk that takes it furthest; `until`: an instant of time.monotonic."""
     tried = list[Trial]()
-    for held in _held(maps):
-        about = _linear(maps, then, held)
+    for held in held_choices(maps):
+        about = linear(maps, then, held)
         if about is None:
             continue
         for stance, m in maps.items():
@@ -93,7 +93,7 @@ def walks(maps: Mapping[str, Map], then: Mapping[str, Sequence[str]], slack: flo
     return found
 
 
-def _held(maps: Mapping[str, Map]) -> list[Values]:
+def held_choices(maps: Mapping[str, Map]) -> list[Values]:
     """Choices of what is held, in all stances together."""
     met: dict[str, Variable] = {}
     for m in maps.values():
@@ -101,7 +101,8 @@ def _held(maps: Mapping[str, Map]) -> list[Values]:
     return combinations(list(met.values()), np.random.default_rng(0))[:MOST_HELD]
 
 
-def _linear(maps: Mapping[str, Map], then: Mapping[str, Sequence[str]], held: Values) -> Linear | None:
+def linear(maps: Mapping[str, Map], then: Mapping[str, Sequence[str]], held: Values) -> Linear | None:
+    """The maps about their targets; None where they have no value."""
     centres = {s: np.array(m.target(held)) for s, m in maps.items()}
     jacobian, miss = dict[str, Floats](), dict[Step, Floats]()
     for s, m in maps.items():

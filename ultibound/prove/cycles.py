@@ -17,12 +17,13 @@ from ..certificate.graph import Step
 from ..checker.reals import Undefined
 from ..checker.rules import Rejected
 from ..claim.constants import constant
-from ..claim.obligations import Variable, together
+from ..claim.obligations import Variable
 from ..contraction.norms import Matrices, floats
-from ..contraction.rounds import MOST_HELD, Map
+from ..contraction.rounds import MOST_HELD
 from ..contraction.samples import combinations
 from ..contraction.walks import walks
 from ..contraction.words import RoundWord, fastest_round
+from .runs import map_of
 from .several import SPARE
 from .stances import StanceSearch
 
@@ -37,28 +38,10 @@ def going_round(a: GraphAttempt, invariant: int, lines: Mapping[Step, int]) -> N
     spent = sum(x.spent for x in a.enclosers)
     if any(x.interrupted for x in a.enclosers):
         return
-    maps = {s: _map(x) for s, x in a.stances.items()}
+    maps = {s: map_of(x.claim, x.obligations, x.ranges) for s, x in a.stances.items()}
     then = {s.name: s.then for s in a.claim.stances}
     for found in walks(maps, then, a.gap, time.monotonic() + max(0.0, a.until - time.monotonic() - spent)):
         a.writer.orbit_around(found.stances, found.start, found.held, found.steps, invariant, lines)
-
-
-def _map(x: StanceSearch) -> Map:
-    o = x.obligations
-    table = Matrices([[(y, x.ranges.runner(y, False))] for y in (o.image(s) for s in o.states)])
-    aims = [(y, x.ranges.runner(y, False)) for y in (o.target(s) for s in o.states)]
-    met = {v.name for v in table.variables}
-    extra = [v for v in together([y for y, _ in aims]) if v.name not in met]
-
-    def target(held: Mapping[str, Fraction]) -> list[float]:
-        rows = [np.array([[to_float(held[v.name]) for v in y.variables]]).reshape(1, -1) for y, _ in aims]
-        return [float(r(at, at, gradient=False).low[0]) for (_, r), at in zip(aims, rows, strict=True)]
-
-    def run(at: Floats) -> Floats:
-        return table.at(at[:, : len(table.variables)])[:, :, 0]
-
-    held = frozenset(n for n, q in x.claim.uncertain.items() if q.held)
-    return Map([*table.variables, *extra], o.states, run, target, held)
 
 
 def growing_round(a: GraphAttempt, on: Sequence[int], lines: Mapping[Step, int]) -> None:

@@ -30,6 +30,7 @@ from ..contraction.graph import Family, Samples, bounds, families, radii
 from ..contraction.norms import floats
 from .cycles import going_round, growing_round
 from .one import COARSE, DECIDED, Attempt, Known, apart
+from .runs import run_out
 from .several import SHARES, SPARE, identity, in_unit
 from .stances import StanceSearch, StepSearch
 
@@ -139,6 +140,9 @@ class GraphAttempt(Attempt):
             for s, x in each.items():
                 if r.kind in RANGED and r.stance in (None, s) and not self.variant:
                     x._ranged(k, x.domain, on[s], points=True)
+        ground = {s: (x.claim, x.obligations, x.ranges, x.writer.derivation) for s, x in each.items()}
+        until = self.until - sum(x.spent for x in self.enclosers)
+        run_out(self.claim, self.variant, w, ground, {s.name: s.then for s in self.claim.stances}, until)
 
     def _search(self, way: Way) -> StepSearch:
         return StepSearch([self.stances[s] for s in way], self.until, self.enclosers)

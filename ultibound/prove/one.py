@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from collections.abc import Callable
+from collections.abc import Callable, Sequence
 from contextlib import suppress
 from dataclasses import replace
 from fractions import Fraction
@@ -22,6 +22,7 @@ from ..checker.flows import Flows
 from ..checker.graph_outcomes import results_of
 from ..checker.reals import Undefined
 from ..checker.rules import Rejected
+from ..checker.runs import ALONE
 from ..checker.sector import applies
 from ..checker.theorems import Variant, levels, movement, sharpest
 from ..claim import Bad, Claim, ClaimError
@@ -32,6 +33,7 @@ from ..contraction.curve import Profile, inward
 from ..contraction.orbits import Steering, orbits, slow_path
 from ..stance.points import Unsolved
 from ..stance.trials import Trial, trial
+from .runs import run_out
 
 SHARPER = 1e-2  # factor on the gap when an undecided requirement is pursued
 FINEST = 1e-11
@@ -182,6 +184,13 @@ class Attempt:
         for number, r in enumerate(self.claim.requirements, 1):
             if r.kind in RANGED and not self.variant:
                 self._range(number, through, way, domain, on)
+        self._run_out(("radius",))
+
+    def _run_out(self, kinds: Sequence[str]) -> None:
+        """Runs that refute what is asked of radii (of several states, of steps too): proofs/orbit.md (3), (4)."""
+        ground = {ALONE: (self.claim, self.obligations, self.ranges, self.writer.derivation)}
+        until = self.until - self.ranges.spent
+        run_out(self.claim, self.variant, self.writer, ground, {ALONE: [ALONE]}, until, kinds)
 
     def _course(
         self, domain: Domain, ball: int, on: int, early: Callable[[int], int | None], most: Fraction

@@ -26,14 +26,15 @@ from ..checker.reals import Undefined
 from ..checker.rules import Rejected
 from ..claim import Bad, ClaimError
 from ..claim.constants import constant
-from ..claim.obligations import RANGED, Domain, Obligation, Variable, together
+from ..claim.obligations import RANGED, Domain, Obligation, Variable
 from ..contraction.metrics import Proposal, proposals
 from ..contraction.norms import Matrices, Norm, Stretched, floats, stretched
-from ..contraction.rounds import MOST_HELD, Map, courses
+from ..contraction.rounds import MOST_HELD, courses
 from ..contraction.samples import combinations, drawn
 from ..contraction.words import Word, fastest
 from .closing import Table, closed_in
 from .one import COARSE, DECIDED, Attempt
+from .runs import map_of
 
 if TYPE_CHECKING:
     from ..certificate.lines import Writer
@@ -108,6 +109,7 @@ class SeveralAttempt(Attempt):
         for k, r in enumerate(self.claim.requirements, 1):
             if r.kind in RANGED and not self.variant:
                 self._range(k, through, way, self.domain, on)
+        self._run_out(("steps", "radius"))
 
     def _known_routes(self) -> list[str]:
         """The routes that gain and residual may come from, the one that is asked for first.
@@ -530,22 +532,8 @@ class SeveralAttempt(Attempt):
         """A periodic orbit that takes each state far from its target: proofs/several.md (6)."""
         if not self.writer.proof.lines[uses[1]].concludes["gain"] < 1 or self.ranges.interrupted:
             return
-        o = self.obligations
-        table = Matrices([[(x, self.ranges.runner(x, False))] for x in (o.image(s) for s in o.states)])
-        aims = [(x, self.ranges.runner(x, False)) for x in (o.target(s) for s in o.states)]
-        met = {v.name for v in table.variables}
-        extra = [v for v in together([x for x, _ in aims]) if v.name not in met]
-
-        def target(held: dict[str, Fraction]) -> list[float]:
-            rows = [np.array([[to_float(held[v.name]) for v in x.variables]]).reshape(1, -1) for x, _ in aims]
-            return [float(r(at, at, gradient=False).low[0]) for (_, r), at in zip(aims, rows, strict=True)]
-
-        def run(at: Floats) -> Floats:
-            return table.at(at[:, : len(table.variables)])[:, :, 0]
-
-        held = frozenset(n for n, q in self.claim.uncertain.items() if q.held)
         bits = 0 if self.writer.exact("misses", uses[0]) else ORBIT_BITS
-        steps = Map([*table.variables, *extra], o.states, run, target, held)
+        steps = map_of(self.claim, self.obligations, self.ranges)
         for course in courses(steps, self.gap, self.claim.horizon, self.ranges.until - self.ranges.spent):
             with suppress(Undefined, Rejected):
                 self.writer.periodic(course.start, course.held, course.steps, uses, bits)

@@ -34,6 +34,7 @@ PAGES = {
     "ultimate-bound": ("ultimate-bound.md", "the bound in the long run, ε/(1 − k)"),
     "orbit": ("orbit.md", "a periodic orbit: the state surely goes this far, again and again"),
     "path": ("orbit.md", "a trajectory that is still this far out after its steps"),
+    "escape": ("orbit.md", "a trajectory that leaves the region, from a start this near its target"),
     "metric": ("matrix.md", "an exact norm, with its exact inverse"),
     "matrix": ("matrix.md", "the norm of all matrices over the boxes of a tree"),
     "entries": ("matrix.md", "every entry of all matrices over the boxes of a tree"),
@@ -50,6 +51,8 @@ PAGES = {
     "graph-componentwise": ("graph.md", "a bound for each state in each stance"),
     "graph-orbit": ("graph.md", "a periodic orbit around a closed walk of stances"),
     "graph-periodic": ("graph.md", "a periodic orbit of several states around a closed walk of stances"),
+    "graph-path": ("orbit.md", "a trajectory through stances that is still this far out after its steps"),
+    "graph-escape": ("orbit.md", "a trajectory through stances that leaves the region, from a start this near its target"),
     "graph-product": ("graph.md", "Jacobians around a closed walk of stances, whose product grows in every norm"),
 }
 GROUPS = (
@@ -80,7 +83,7 @@ GROUPS = (
         ),
     ),
     ("Bounds in the long run", ("bound", "componentwise", "split-componentwise", "absorbed", "attracting")),
-    ("Orbits and paths: what surely happens", ("orbit", "path", "periodic")),
+    ("Orbits and paths: what surely happens", ("orbit", "path", "periodic", "escape")),
     ("Requirements about ranges", ("require",)),
     ("Pieces of a gain: the same proof for other gains", ("gains",)),
 )

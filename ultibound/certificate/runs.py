@@ -1,0 +1,89 @@
+"""Lines about runs that are slow to settle, or leave the region, in the making (proofs/orbit.md (3), (4))."""
+
+from __future__ import annotations
+
+from collections.abc import Mapping
+from contextlib import suppress
+from fractions import Fraction
+from typing import Any
+
+from ..checker.derive import Derivation, Ranged
+from ..checker.numerals import decimal_down
+from ..checker.periodic import variables_of
+from ..checker.reals import Undefined
+from ..checker.rules import Rejected
+from ..checker.runs import ALONE
+from ..checker.runs import Run as Followed
+from ..contraction.runs import Run
+from .lines import DIGITS, FEW_STEPS, IRRATIONAL, Writer, downward, growing, upward
+from .norms import spelled
+
+RUN_BITS = 256
+FEWER_STEPS = 6  # where fractions grow with products
+
+
+def run(w: Writer, kind: str, state: str, found: Run) -> bool:
+    """Appends a path or an escape; whether it shows what a search hopes it does. Rounded, or else exactly."""
+    g = w.proof.graph
+    stances = {ALONE: w.derivation} if g is None else g.stances
+    spans = {s: variables_of(stances[s], True) for s in dict.fromkeys(found.stances)}
+    held = {n: v for each in spans.values() for n, v in each.items() if _held(w, n)}
+    witness: dict[str, Any] = {
+        "start": [str(found.error)],
+        "held": {n: _spelled(v, found.held) for n, v in held.items()},
+        "steps": [
+            {n: _spelled(v, x) for n, v in spans[s].items() if n not in held}
+            for s, x in zip(found.stances, found.steps, strict=False)
+        ],
+    }
+    if g is not None:
+        witness["stances"] = list(found.stances)
+    few = min(_fewest(stances[s]) for s in spans)
+    for bits in (RUN_BITS, *([0] if len(found.steps) <= few else [])):
+        with suppress(Undefined, Rejected):
+            _append(w, stances, kind, state, {**witness, "bits": bits})
+            return True
+    return False
+
+
+def _append(w: Writer, stances: Mapping[str, Derivation], kind: str, state: str, witness: dict[str, Any]) -> None:
+    names = witness.get("stances") or [ALONE] * (len(witness["steps"]) + 1)
+    lines = {ALONE if w.proof.graph is None else x.part: (n, x.flows) for n, x in w.proof.lines.items() if x.flows}
+    uses = [lines[s] for s in dict.fromkeys(names) if s in lines]
+    followed = Followed(stances, names, {s: flows for s, (_, flows) in lines.items() if flows}, state, witness)
+    concludes = {"from": upward(abs(followed.error))}
+    if kind == "path":
+        far = followed.distance(followed.follow()[-1])
+        concludes |= {
+            "distance": decimal_down(far, DIGITS) if witness["bits"] else downward(far),
+            "steps": str(len(witness["steps"])),
+        }
+    rule = kind if w.proof.graph is None else f"graph-{kind}"
+    line = {
+        "rule": rule,
+        "proves": f"{kind}[{state}]",
+        "uses": [n for n, _ in uses],
+        "witness": witness,
+        "concludes": concludes,
+    }
+    w.proof.add(line)
+    w.raw.append(line)
+
+
+def _held(w: Writer, name: str) -> bool:
+    quantity = w.derivation.statement.uncertain.get(name)
+    return quantity is not None and quantity.held
+
+
+def _spelled(v: Ranged, values: Mapping[str, Fraction]) -> str:
+    """A value that a search chose; of what the map does not follow any of its range."""
+    return spelled(v, values.get(v.name, sum(v.inside, Fraction(0)) / 2))
+
+
+def _fewest(d: Derivation) -> int:
+    """How many steps exact fractions carry."""
+    names = d.names()
+    below = {k for s in d.states for x in ("next", "target") for k in d.terms.below(names.of(f"{x}({s})"))}
+    if any(d.terms.all[k][0] in IRRATIONAL for k in below):
+        return 0
+    return FEWER_STEPS if any(growing(d.terms, k) for k in below) else FEW_STEPS
