@@ -26,6 +26,7 @@ from tests.checker import (
     test_product_boundaries,
     test_pushes_boundaries,
     test_reading,
+    test_run_boundaries,
     test_several_boundaries,
     test_squares_boundaries,
     test_stance_boundaries,
@@ -55,7 +56,7 @@ PROOFS = (
 STANCES = ("calculus", "motion", "pushes", "signals", "models", "rates", "flows")
 NORMS = ("matrices", "inequality")
 SEVERAL = ("jacobians", "several", "outcomes", "periodic", "products", "absorbed", "attracting")
-GRAPHS = ("graph", "graph_outcomes", "stance_outcomes", "cycles", "cycle_outcomes")
+GRAPHS = ("graph", "graph_outcomes", "stance_outcomes", "cycles", "cycle_outcomes", "runs")
 SQUARES = ("squares", "polynomials")
 GAINS = ("gains",)
 READING = ("grammar", "numerals", "statement", "tables", "scope", "command")
@@ -89,17 +90,23 @@ def batteries(copies: Copies) -> dict[str, Battery]:
         | test_product_boundaries.CASES
         | test_absorbed_boundaries.CASES
         | test_attracting_boundaries.CASES
+        | test_run_boundaries.CASES
     )
     several = Battery(test_several_boundaries.CASES | orbits | horizon_cases | pushes_cases | squares_cases)
     stance_cases = {f"stance: {n}": q for n, q in test_stance_boundaries.CASES.items()}
     graphs = Battery(
-        test_graph_boundaries.CASES | test_cycle_boundaries.CASES | test_ways_boundaries.CASES | pushes_cases
+        test_graph_boundaries.CASES
+        | test_cycle_boundaries.CASES
+        | test_ways_boundaries.CASES
+        | test_run_boundaries.CASES
+        | pushes_cases
     )
     several_cases = {f"several: {n}": q for n, q in test_several_boundaries.CASES.items()}
     graph_cases = {f"graph: {n}": q for n, q in test_graph_boundaries.CASES.items()}
     gain_cases = {f"gains: {n}": q for n, q in test_gains_boundaries.CASES.items()}
     attracting_cases = {f"attracting: {n}": q for n, q in test_attracting_boundaries.CASES.items()}
-    more = several_cases | graph_cases | horizon_cases | squares_cases | gain_cases | attracting_cases
+    run_cases = {f"runs: {n}": q for n, q in test_run_boundaries.CASES.items()}
+    more = run_cases | several_cases | graph_cases | horizon_cases | squares_cases | gain_cases | attracting_cases
     proofs = Battery(test_boundaries.CASES | stance_cases | more)
     of_norms, of_reading = dict.fromkeys(NORMS, norms), dict.fromkeys(READING, reading)
     of_several = dict.fromkeys(SEVERAL, several) | dict.fromkeys(GRAPHS, graphs)

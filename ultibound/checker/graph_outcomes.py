@@ -277,7 +277,7 @@ class GraphResults(Results):
         still = self.still_out([(n, x) for n, x in paths if x.walk[0] in names], start[0], end[1])
         span = Span(still, Fraction(min(counts)) if counts else None)
         proved = compared(r.relation, Span(None, span.upper), c)
-        return verdict(proved, opposed(r.relation, Span(still, None), c), None if span == NOTHING else span)
+        return verdict(proved, opposed(r.relation, Span(None, still), c), None if span == NOTHING else span)
 
     def below(self, wanted: Levels, route: str) -> Levels | None:
         """Levels no higher that are mapped below themselves on every step."""

@@ -313,7 +313,7 @@ class SeveralResults(Results):
         least = self.still_out(self.lines("path", f"path[{r.state}]"), start[0], end[1])
         span = Span(least, upper)
         proved = compared(r.relation, Span(None, upper), c)
-        return verdict(proved, opposed(r.relation, Span(least, None), c), None if span == NOTHING else span)
+        return verdict(proved, opposed(r.relation, Span(None, least), c), None if span == NOTHING else span)
 
     def by_state(self) -> dict[str, dict[str, Span | None]]:
         found: dict[str, dict[str, Span | None]] = {}

@@ -52,7 +52,10 @@ PAGES = {
     "graph-orbit": ("graph.md", "a periodic orbit around a closed walk of stances"),
     "graph-periodic": ("graph.md", "a periodic orbit of several states around a closed walk of stances"),
     "graph-path": ("orbit.md", "a trajectory through stances that is still this far out after its steps"),
-    "graph-escape": ("orbit.md", "a trajectory through stances that leaves the region, from a start this near its target"),
+    "graph-escape": (
+        "orbit.md",
+        "a trajectory through stances that leaves the region, from a start this near its target",
+    ),
     "graph-product": ("graph.md", "Jacobians around a closed walk of stances, whose product grows in every norm"),
 }
 GROUPS = (
