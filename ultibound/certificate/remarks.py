@@ -15,6 +15,7 @@ from ..claim.obligations import RANGED, Obligations
 from .explaining import Explained
 
 NEARLY = Fraction(97, 100)  # share of a bound without attained end that a smaller gap may yet gain
+ONE_BALL = Fraction(101, 100)  # ends of a radius that are farther apart are not those of one ball
 STOPS = {
     "cells": "stopped at the limit of cells",
     "seconds": "stopped at the limit of seconds",

@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from collections.abc import Mapping
+from collections.abc import Iterable, Mapping, Sequence
 from contextlib import suppress
 from fractions import Fraction
 from typing import Any
@@ -14,12 +14,38 @@ from ..checker.reals import Undefined
 from ..checker.rules import Rejected
 from ..checker.runs import ALONE
 from ..checker.runs import Run as Followed
+from ..checker.theorems import Line
+from ..claim.constants import constant
+from ..claim.model import Requirement
 from ..contraction.runs import Run
 from .lines import DIGITS, FEW_STEPS, IRRATIONAL, Writer, downward, growing, upward
 from .norms import spelled
 
 RUN_BITS = 256
 FEWER_STEPS = 6  # where fractions grow with products
+MOST_NAMED = 6  # stances of a run
+Ends = tuple[Fraction, Fraction]
+
+
+def told(r: Requirement, lines: Iterable[Line], values: Mapping[str, Ends], within: Sequence[str] = (ALONE,)) -> str:
+    """The run that refutes what is asked of steps or a radius, in words; nothing where none does."""
+    kind = {"steps": "path", "radius": "escape"}.get(r.kind)
+    several = [x for x in lines if x.rule in (kind, f"graph-{kind}") and x.proves == f"{kind}[{r.state}]"]
+    several = [x for x in several if not x.walk or x.walk[0] in within]
+    if r.kind == "steps" and r.start is not None and r.end is not None:
+        start, end = constant(r.start, values)[0], constant(r.end, values)[1]
+        several = [x for x in several if x.concludes["from"] <= start and x.concludes["distance"] > end]
+    if not several:
+        return ""
+    near = min(several, key=lambda x: x.concludes["from"] if kind == "escape" else -x.concludes["steps"])
+    off = f"from {float(near.concludes['from']):.6g} off its target"
+    through = f" through {', '.join(near.walk[:MOST_NAMED])}" + (", …" if len(near.walk) > MOST_NAMED else "")
+    way = through if len(set(near.walk)) > 1 else ""
+    if kind == "escape":
+        return f"a run{way} that starts with {r.state} {off} leaves the region"
+    steps, far = near.concludes["steps"], float(near.concludes["distance"])
+    after = f"after {steps} step{'s' if steps != 1 else ''}"
+    return f"a run{way} that starts with {r.state} {off} is still {far:.6g} off {after}"
 
 
 def run(w: Writer, kind: str, state: str, found: Run) -> bool:

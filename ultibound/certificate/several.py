@@ -11,7 +11,8 @@ from ..claim import Claim
 from ..claim.constants import constant
 from ..claim.model import Requirement
 from ..claim.obligations import RANGED, Obligations
-from .remarks import STOPS
+from .remarks import ONE_BALL, STOPS
+from .runs import told
 
 
 @dataclass(frozen=True)
@@ -52,6 +53,8 @@ class SeveralRemarks:
         if outcome.verdict == "refuted" and r.kind == "gain" and asked <= set(growing):
             slowest = min((growing[x] for x in asked), key=lambda x: x.concludes["lower"])
             parts.append(f"whatever the norm: {_grows(slowest)}")
+        if outcome.verdict == "refuted":
+            parts.append(told(r, [x for x in lines.values() if x.variant == about], self.claim.values))
         return ("; ".join(p for p in parts if p)[:900] or None), pursue
 
     def why(self, r: Requirement) -> str:
@@ -75,7 +78,9 @@ class SeveralRemarks:
         if r.kind == "settles":
             return "the bound is not below the radius of the set"
         if r.kind == "steps":
-            return "no proved sequence of steps is as short"
+            return "no proved sequence of steps is as short, and no run was found that takes longer"
+        if r.kind == "radius" and r.state is None and not (self.claim.metric == "box" or self.claim.weights):
+            return "a length in a norm that the claim leaves free says nothing; ask for radius(s), or state weights"
         return "the constant lies beyond what is proved"
 
     def open(self, r: Requirement, outcome: Outcome) -> bool:
@@ -84,7 +89,9 @@ class SeveralRemarks:
             return False
         low, high = constant(r.constant, self.claim.values)
         least, most = outcome.value.lower, outcome.value.upper
-        return least is not None and most is not None and least <= high and low <= most and least < most
+        if least is None or most is None or (r.kind == "radius" and most > least * ONE_BALL):
+            return False
+        return least <= high and low <= most and least < most
 
 
 def _grows(line: Line) -> str:

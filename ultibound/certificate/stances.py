@@ -11,7 +11,8 @@ from ..claim import Claim
 from ..claim.constants import constant
 from ..claim.model import Requirement
 from ..claim.obligations import RANGED, Obligations
-from .remarks import STOPS
+from .remarks import ONE_BALL, STOPS
+from .runs import told
 
 MOST_NAMED = 6  # stances of a walk
 
@@ -51,8 +52,10 @@ class StanceRemarks:
         return ("; ".join(p for p in parts if p)[:900] or None), pursue
 
     def shown(self, r: Requirement, asked: list[str], about: Variant) -> str:
-        """The orbit or product that refutes a requirement, if one does."""
+        """The orbit, product or run that refutes a requirement, if one does."""
         lines = [x for x in self.results.proof.lines.values() if x.walk and x.variant == about]
+        if r.kind in ("steps", "radius"):
+            return told(r, lines, self.claim.values, asked)
         if r.kind == "gain":
             words = [x for x in lines if x.rule == "graph-product" and set(x.walk) <= set(asked)]
             best = max(words, key=lambda x: x.concludes["lower"], default=None)
@@ -65,6 +68,7 @@ class StanceRemarks:
         found = [
             (far, key, x)
             for x in lines
+            if x.rule in ("graph-orbit", "graph-periodic")
             for key, far in x.concludes.items()
             if key.partition(":")[0] in asked and r.state in (None, key.partition(":")[2])
         ]
@@ -94,7 +98,7 @@ class StanceRemarks:
         if r.kind == "steps":
             if self.claim.horizon > 1:
                 return "steps are not counted yet where several are taken together"
-            return "no proved sequence of steps is as short"
+            return "no proved sequence of steps is as short, and no run was found that takes longer"
         if r.kind in ("bound", "sharp_bound") and r.state is not None:
             return "the constant lies between what is proved and what orbits were found to reach"
         return "the constant lies beyond what is proved"
@@ -105,7 +109,9 @@ class StanceRemarks:
             return False
         low, high = constant(r.constant, self.claim.values)
         least, most = outcome.value.lower, outcome.value.upper
-        return least is not None and most is not None and least <= high and low <= most and least < most
+        if least is None or most is None or (r.kind == "radius" and most > least * ONE_BALL):
+            return False
+        return least <= high and low <= most and least < most
 
 
 def _way(line: Line) -> str:
