@@ -12,11 +12,15 @@ from typing import Any
 import pytest
 
 import ultibound.checker
-from tests.checker.test_boundaries import Draft, Entries, Questions, but, derivation
+from tests.checker.test_boundaries import GONE, Draft, Entries, Questions, but, derivation
 from tests.checker.test_boundaries import claim as claim_of_one
-from tests.checker.test_graph_boundaries import Steps
+from tests.checker.test_cycle_boundaries import AT_REST
+from tests.checker.test_cycle_boundaries import orbit as turned
+from tests.checker.test_graph_boundaries import Steps, regions
 from tests.checker.test_graph_boundaries import claim as claim_of_stances
-from tests.checker.test_several_boundaries import BOX, STATED, UNWEIGHTED, WEIGHTS, Lines, claim, hair
+from tests.checker.test_periodic_boundaries import FOUND
+from tests.checker.test_periodic_boundaries import orbit as round_
+from tests.checker.test_several_boundaries import BOX, STATED, UNWEIGHTED, WEIGHTS, Lines, claim, hair, region
 from tests.checker.test_stance_boundaries import STILL as GROUND
 from tests.stances import stance
 
@@ -62,10 +66,10 @@ def plain(asked: Sequence[str], **other: Any) -> Lines:
     return d
 
 
-def run(d: Draft, kind: str, state: str, start: str, steps: Sequence[dict[str, str]], far: str = "", least: str = "", held: dict[str, str] | None = None, bits: int = 0, stances: Sequence[str] = (), uses: Sequence[int] = ()) -> int:
+def run(d: Draft, kind: str, state: str, start: str, steps: Sequence[dict[str, str]], far: str = "", least: str = "", held: dict[str, str] | None = None, bits: int = 0, stances: Sequence[str] = (), uses: Sequence[int] = (), at: int | None = None) -> int:
     shown = {"distance": far, "steps": str(len(steps))} if kind == "path" else {}
-    witness: dict[str, Any] = {"bits": bits, "held": held or {}, "start": [start], "steps": list(steps)} | ({"stances": list(stances)} if stances else {})
-    return d.line(f"graph-{kind}" if stances else kind, f"{kind}[{state}]", uses, witness, **{"from": least or start}, **shown)
+    witness: dict[str, Any] = ({} if at is None else {"at": at}) | {"bits": bits, "held": held or {}, "start": [start], "steps": list(steps)} | ({"stances": list(stances)} if stances else {})
+    return d.line(f"graph-{kind}" if stances else kind, f"{kind}[{state}]", uses, witness, **{"push" if kind == "pushed" else "from": least or start}, **shown)
 
 
 PATHS = [
@@ -88,9 +92,9 @@ def paths() -> None:
         ("concludes distance", hair("15/16", 1), STILL), ("concludes steps", "3", STILL), ("concludes steps", "1", STILL), ("concludes from", hair("1", -1), "from: less than the error at the start"),
         ("witness start", [hair("1", 1)], "from: less than the error"), ("witness start", ["1", "0"], "start: a list of 1"), ("witness start", {"x": "1", "y": "0"}, "start: a list of 1"), ("witness start", [], "start: a list of 1"), ("witness start", [hair("1", -1)], STILL),
         ("witness start", ["-1"], STILL), ("witness steps", [UP], STILL), ("witness steps", [UP, {"p": hair("1/8", 1)}], "at.p: outside the range"), ("witness steps", [UP, {"p": hair("-1/8", -1)}], "at.p: outside the range"), ("witness steps", [UP, {}], "steps: one value for each quantity"), ("witness steps", [UP, {**UP, "y": "0"}], "steps: one value"),
-        ("witness steps", [UP, {"p": hair("1/8", -1)}], STILL), ("witness steps", "up", "rests on no other line"), ("witness steps", [UP, 1], "steps: one value"), ("witness held", UP, "held: one value"), ("witness held", [], "held: one value"), ("witness bits", 23, "bits: 0 for exact rationals"),
+        ("witness steps", [UP, {"p": hair("1/8", -1)}], STILL), ("witness steps", "up", "steps: a list of up to 1000"), ("witness steps", [UP, 1], "steps: one value"), ("witness held", UP, "held: one value"), ("witness held", [], "held: one value"), ("witness bits", 23, "bits: 0 for exact rationals"),
         ("proves", "path", "path: of one of the states x, y"), ("proves", "path[z]", "path: of one of the states"), ("proves", "path[x,y]", "path: of one of"), ("proves", "escape[x]", "path: of one of"), ("proves", "path[y]", LEFT), ("proves", "path[x]\n", "path: of one of"),
-        ("uses", [4], "path: rests on no other line"), ("uses", [1], "path: rests on no other line"), ("rule", "graph-path", "witness: the keys of graph-path"),
+        ("uses", [4], "path: rests on flows of stances"), ("uses", [1], "path: rests on flows of stances"), ("rule", "graph-path", "witness: the keys of graph-path"),
     )):
         changed = but(entries, f"proof 4 {key}", text)
         if key == "proves" and text == "path[y]":
@@ -118,7 +122,7 @@ def paths() -> None:
     idle = two.found(None, [("steps(x, 1, 1/2) <= 2", "refuted")], BOX)
     reject("a path that is shorter", idle, "proof", "line 6 serves no later line and no result")
     reject("a path that is shorter, first", but(idle, "proof", [*idle["proof"][:4], idle["proof"][5], idle["proof"][4]]), "proof", "line 5 serves no later line and no result")
-    for count, reason in ((1000, ""), (1001, "has up to 1000 steps")):
+    for count, reason in ((1000, ""), (1001, "steps: a list of up to 1000")):
         long = plain(["steps(x, 1, 1/2) <= 2"], map=("x + 0*p", "y"))
         run(long, "path", "x", "1", [UP] * count, "1")
         found = long.found(None, [("steps(x, 1, 1/2) <= 2", "refuted")], BOX)
@@ -178,7 +182,7 @@ def escapes() -> None:
     accept("escape, shrink", shrunk.found(None, ESCAPES[:1], BOX))
     for n, (key, text, reason) in enumerate((
         ("concludes from", "7/8", "from: less than the error at the start"), ("witness start", ["7/8"], OUT), ("witness start", ["-7/8"], OUT), ("witness steps", [], OUT), ("witness steps", [{"p": "0"}], OUT), ("witness steps", [UP, UP], OUT), ("witness steps", [{"p": "1/4"}], "at.p: outside the range"),
-        ("proves", "escape[x]", OUT), ("proves", "escape", "escape: of one of the states x, y"), ("uses", [4], "escape: rests on no other line"), ("concludes distance", "0", "concludes: the keys of escape"), ("witness start", [NEAR, "0"], "start: a list of 1"),
+        ("proves", "escape[x]", OUT), ("proves", "escape", "escape: of one of the states x, y"), ("uses", [4], "escape: rests on flows of stances"), ("concludes distance", "0", "concludes: the keys of escape"), ("witness start", [NEAR, "0"], "start: a list of 1"),
     )):
         reject(f"escape, {n} {key}", but(entries, f"proof 4 {key}", text), "proof line 5", reason)
     reject("no escape", but(entries, "proof", entries["proof"][:4]), "results", "[1].verdict: refuted is claimed, undecided was derived")
@@ -266,7 +270,7 @@ def through_stances() -> None:
         ("witness stances", ["left", "left"], walk), ("witness stances", ["left", "up"], walk), ("witness stances", ["up", "right"], some), ("witness stances", [["left"], "right"], some), ("witness stances", ["left", ["right"]], walk), ("witness stances", [], some), ("witness stances", "left", some), ("witness stances", ["left"], "steps: values for each step"),
         ("witness stances", ["left", "right", "left"], "steps: values for each step"), ("witness stances", ["right", "left"], "steps: one value for each quantity"), ("witness steps", [P, QS], "steps: values for each step"), ("witness steps", [QS], "steps: one value"), ("witness steps", "up", "steps: values for each step"), ("witness steps", [{"p": hair("1/8", 1)}], "at.p: outside the range"),
         ("witness start", [hair("1", 1)], "from: less than the error"), ("concludes distance", hair("3/2", 1), STILL), ("concludes from", hair("1", -1), "from: less than"), ("proves", "path[v]", "path: of one of the states x"), ("proves", "escape[x]", "path: of one of"), ("proves", "left:path[x]", "graph-path: about all stances"), ("proves", "left>right:path[x]", "graph-path: about all stances"),
-        ("uses", [3], "graph-path: about all stances"), ("rule", "path", "witness: the keys of path"), ("witness held", P, "held: one value"),
+        ("uses", [3], "path: rests on flows of stances"), ("rule", "path", "witness: the keys of path"), ("witness held", P, "held: one value"),
     )):
         reject(f"through stances, {n} {key}", but(entries, f"proof 6 {key}", text), "proof line 7", reason)
     back = two(["steps(x, 1, 1/4) <= 2"])
@@ -302,7 +306,7 @@ def out_of_stances() -> None:
     verdicts("out of stances", entries)
     value("out of stances", entries, 1, None, near)
     value("out of stances", entries, 2, None, None)
-    for n, (key, text, reason) in enumerate((("witness start", ["11/12"], OUT), ("concludes from", "11/12", "from: less than"), ("witness steps", [{"p": "0"}], OUT), ("witness stances", ["left", "left"], "stances: a step that is not allowed"), ("uses", [3], "graph-escape: about all stances"))):
+    for n, (key, text, reason) in enumerate((("witness start", ["11/12"], OUT), ("concludes from", "11/12", "from: less than"), ("witness steps", [{"p": "0"}], OUT), ("witness stances", ["left", "left"], "stances: a step that is not allowed"), ("uses", [3], "escape: rests on flows of stances"))):
         reject(f"out of stances, {n} {key}", but(entries, f"proof 6 {key}", text), "proof line 7", reason)
     both = two([f"radius(x) > {near}", '"radius(x) > 3"\nin = "right"'], spans)
     run(both, "escape", "x", near, [P], stances=["left", "right"])
@@ -324,7 +328,7 @@ def on_the_ground() -> None:
             continue
         accept("on the ground", entries)
         reject("on the ground, without the flow", but(entries, "proof 3 uses", []), "proof line 4", "no trajectory is proved")
-        reject("on the ground, the flow twice", but(entries, "proof 3 uses", [3, 3]), "proof line 4", "escape: rests on no other line")
+        reject("on the ground, the flow twice", but(entries, "proof 3 uses", [3, 3]), "proof line 4", "escape: rests on flows of stances")
     # the same of stances: each stands for a second
     texts, wanted = asked(("radius(x) > 15/16", "left", "refuted"))
     plain_ = two(texts, (SPANS[0], '["-13/8", "3/2"]'))
@@ -366,6 +370,91 @@ def kept_nearer() -> None:
     value("the edge is nearer", found, 0, None, "1")
 
 
+def pushes() -> None:
+    """An orbit at rest in (7/20, 1/5), of [-1, 1]: x pushed by 13/20 is at the end, y by 4/5."""
+    far, high = hair("13/20", 1), hair("4/5", 1)
+    wanted = [(f"push(x) > {far}", "refuted"), (f"push(x) >= {far}", "undecided"), (f"push(x) > {hair(far, -1)}", "undecided"), (f"push(x) >= {hair(far, 1)}", "refuted"), ("push(x) >= 1/2", "proved"), ("push(y) > 3", "undecided"), ("push(x) > 13/20", "undecided")]
+    for top in ("", "shrink = true\n"):
+        found = [(that, "undecided" if top and v == "refuted" else v) for that, v in wanted]
+        d = region([that for that, _ in found], top=top)
+        round_(d, *FOUND["at rest, two steps"])
+        run(d, "pushed", "x", far, [], at=1, uses=[19])
+        entries = d.found("region", found, BOX)
+        name = f"pushed{', shrink' if top else ''}"
+        if not top:
+            tight = entries
+        verdicts(name, entries)
+        value(name, entries, 0, "13/20", far)
+        value(name, entries, 5, "4/5", None)
+    why = "at: the rank of a state of the orbit, in the stance of the push"
+    for n, (key, text, reason) in enumerate((
+        ("witness start", ["13/20"], OUT), ("witness start", ["-13/20"], OUT), ("concludes push", "13/20", "push: less than the error at the start"), ("witness at", 2, why), ("witness at", -1, why), ("witness at", True, why), ("witness at", "0", why), ("witness at", GONE, "witness: the keys of pushed"),
+        ("uses", [], "pushed: rests on flows of stances, and a push on the orbit"), ("uses", [8], why), ("uses", [19, 19], "pushed: rests on"), ("uses", [19, 18], "pushed: rests on"), ("proves", "pushed", "pushed: of one of the states"), ("proves", "pushed[y]", OUT), ("witness held", {"p": "0"}, "held: one value"), ("witness held", [], "held: other values than along the orbit"),
+        ("witness steps", [{"p": "1/8", "q": "0"}], OUT),
+    )):
+        reject(f"pushed, {n} {key}", but(tight, f"proof 19 {key}", text), "proof line 20", reason)
+    accept("pushed, the first state", but(tight, "proof 19 witness at", 0))
+    reject("pushed, a path on an orbit", but(tight, "proof 19", {"rule": "path", "proves": "path[x]", "uses": [19], "witness": {"bits": 0, "held": {}, "start": ["1"], "steps": []}, "concludes": {"from": "1", "distance": "0", "steps": "0"}}), "proof line 20", "path: rests on flows of stances")
+    # (0, 0) is within 1/2 of the orbit: y is within 1/4 of it. Pushed far out, what follows is out as well: 3 -> 3/2 + 1/20 + 1/8
+    for state, start, steps, orbit, good in (("x", "3/2", [], "near", False), ("x", hair("3/2", 1), [], "near", True), ("x", "-3/2", [], "near", False), ("x", hair("-3/2", -1), [], "near", True), ("y", "5/4", [], "near", False), ("y", hair("5/4", 1), [], "near", True), ("y", hair("-5/4", -1), [], "near", True), ("y", "-5/4", [], "near", False),
+                                             ("x", hair("-27/20", -1), [], "at rest", True), ("x", "-27/20", [], "at rest", False), ("y", high, [], "at rest", True), ("x", "53/20", [{"p": "1/8", "q": "1/16"}], "at rest", True), ("x", "1", [{"p": "1/8", "q": "1/16"}], "at rest", False)):
+        d = region([f"push({state}) > 9"])
+        round_(d, *FOUND[orbit])
+        run(d, "pushed", state, start, steps, least=start.removeprefix("-"), at=0, uses=[19])
+        entries = d.found("region", [(f"push({state}) > 9", "refuted")], BOX)
+        name = f"pushed, {state} by {start} after {len(steps)} steps, {orbit}"
+        if good:
+            accept(name, entries)
+        else:
+            reject(name, entries, "proof line 20", OUT)
+
+
+def pushed_in_stances() -> None:
+    """An orbit at 3/20 on the left, of [-1, 1], and at 7/20 on the right, of [-13/8, 13/8]: pushed by 17/20 and 51/40."""
+    left, right = hair("17/20", 1), hair("51/40", 1)
+    texts, wanted = asked(
+        (f"push(x) > {left}", "", "refuted"), (f"push(x) > {left}", "left", "refuted"), (f"push(x) >= {left}", "left", "undecided"), (f"push(x) >= {hair(left, 1)}", "left", "refuted"), ("push(x) >= 1/2", "", "proved"), (f"push(x) > {right}", "right", "refuted"), (f"push(x) >= {right}", "right", "undecided"),
+    )
+    for top in ("", "shrink = true\n"):
+        d = regions(texts, top)
+        turned(d, *AT_REST)
+        run(d, "pushed", "x", left, [], at=0, uses=[28], stances=["left"])
+        run(d, "pushed", "x", right, [], at=1, uses=[28], stances=["right"])
+        found = [(that, "undecided" if top and v == "refuted" else v) for that, v in wanted]
+        entries = d.found("region", found)
+        verdicts(f"pushed in stances{', shrink' if top else ''}", entries)
+        value(f"pushed in stances{', shrink' if top else ''}", entries, 0, "17/20", left)
+        value(f"pushed in stances{', shrink' if top else ''}", entries, 5, "51/40", right)
+        if not top:
+            tight = entries
+    why = "at: the rank of a state of the orbit, in the stance of the push"
+    for n, (key, text, reason) in enumerate((
+        ("witness start", ["17/20"], OUT), ("concludes push", "17/20", "push: less than"), ("witness at", 1, why), ("witness at", 2, why), ("witness stances", ["right"], why), ("witness stances", ["left", "right"], "steps: values for each step"), ("uses", [11], why), ("uses", [], "pushed: rests on"), ("proves", "left:pushed[x]", "graph-pushed: about all stances together"),
+    )):
+        reject(f"pushed in stances, {n} {key}", but(tight, f"proof 28 {key}", text), "proof line 29", reason)
+    one = regions(['"push(x) > 9"\nin = "right"'])
+    turned(one, *AT_REST)
+    run(one, "pushed", "x", left, [], at=0, uses=[28], stances=["left"])
+    reject("pushed in another stance", one.found("region", [("push(x) > 9", "refuted")]), "results", "[1].verdict: refuted is claimed, undecided was derived")
+
+
+def held_while_pushed() -> None:
+    """What is held along an orbit stays so after a push: h + (x - h)/2 + p rests at h + 1/4."""
+    text = claim("h + (x - h)/2 + p", "y/2", uncertain='p = ["-1/8", "1/8"]\nh = { range = ["-1/8", "1/8"], held = true }', target=("h", "0"), asked=["push(x) > 9"], rest=STATED)
+    d = Lines(text)
+    norm = d.metric("box", WEIGHTS, UNWEIGHTED)
+    aims = [d.range("target[x]", "-1/8", "1/8"), d.range("target[y]", "0", "0")]
+    ball = d.theorem("smaller-ball", "ball", [norm, *aims], radius="1/2")
+    pair = d.theorem("slope", "slope", [d.matrix("slopes", "1/2", [ball]), d.matrix("misses", "1/8", [ball])], gain="1/2", residual="1/8")
+    kept = d.theorem("invariant-ball", "invariant", [ball, pair])
+    orbit = round_(d, ("1/4", "0"), [{"p": "1/8"}], ("1/4", "0"), (kept, pair), {"h": "1/8"})
+    run(d, "pushed", "x", hair("5/8", 1), [], held={"h": "1/8"}, at=0, uses=[orbit])
+    entries = d.found("smaller ball", [("push(x) > 9", "refuted")], BOX)
+    accept("held while pushed", entries)
+    reject("another value while pushed", but(entries, "proof 9 witness held", {"h": "0"}), "proof line 10", "held: other values than along the orbit")
+    reject("no value while pushed", but(entries, "proof 9 witness held", {}), "proof line 10", "held: one value for each held quantity")
+
+
 @unit
 def stances_that_take_their_time(checker: Any) -> None:
     """A duration of 0 or less is no stance."""
@@ -390,6 +479,9 @@ through_stances()
 on_the_ground()
 kept_nearer()
 out_of_stances()
+pushes()
+pushed_in_stances()
+held_while_pushed()
 
 
 @pytest.mark.parametrize("name", CASES)

@@ -973,7 +973,7 @@ def refused_rules() -> None:
     proof = PLAIN["proof"]
     for rule, witness, concludes in (("sector", {}, {"gain": "1", "residual": "1"}), ("curve", {}, {"gain": "1", "residual": "1", "sharp": "1"}), ("shells", {"radii": ["1"], "slope": "0"}, {}), ("orbit", {"bits": 0, "held": {}, "start": [], "steps": []}, {"distance": "0", "highest": "0", "lowest": "0"}),
                                      ("path", {"bits": 0, "held": {}, "start": [], "steps": []}, {"distance": "0", "from": "0", "steps": "1"})):
-        reject(f"{rule} of two states", but(PLAIN, "proof 17", {"rule": rule, "proves": rule, "uses": [8], "witness": witness, "concludes": concludes}), "proof line 18", f"{rule}: {'rests on no other line' if rule == 'path' else 'known for a single state only'}")
+        reject(f"{rule} of two states", but(PLAIN, "proof 17", {"rule": rule, "proves": rule, "uses": [8], "witness": witness, "concludes": concludes}), "proof line 18", f"{rule}: {'of one of the states x, y' if rule == 'path' else 'known for a single state only'}")
     accept("a single state", BASE)
     for n in (1, 9, 13, 15, 16):
         line = {**proof[n - 1], "uses": []}

@@ -53,7 +53,7 @@ class SeveralRemarks:
         if outcome.verdict == "refuted" and r.kind == "gain" and asked <= set(growing):
             slowest = min((growing[x] for x in asked), key=lambda x: x.concludes["lower"])
             parts.append(f"whatever the norm: {_grows(slowest)}")
-        if outcome.verdict == "refuted":
+        if outcome.verdict == "refuted" and r.kind in ("steps", "radius", "push"):
             parts.append(told(r, [x for x in lines.values() if x.variant == about], self.claim.values))
         return ("; ".join(p for p in parts if p)[:900] or None), pursue
 

@@ -54,7 +54,7 @@ class StanceRemarks:
     def shown(self, r: Requirement, asked: list[str], about: Variant) -> str:
         """The orbit, product or run that refutes a requirement, if one does."""
         lines = [x for x in self.results.proof.lines.values() if x.walk and x.variant == about]
-        if r.kind in ("steps", "radius"):
+        if r.kind in ("steps", "radius", "push"):
             return told(r, lines, self.claim.values, asked)
         if r.kind == "gain":
             words = [x for x in lines if x.rule == "graph-product" and set(x.walk) <= set(asked)]

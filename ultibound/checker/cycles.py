@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from collections.abc import Iterable, Mapping
+from collections.abc import Callable, Iterable, Mapping
 from dataclasses import replace
 from fractions import Fraction
 from itertools import pairwise
@@ -15,10 +15,10 @@ from .flows import Flows
 from .graph import Graph, kept, parts, stepped
 from .jacobians import Table
 from .numerals import Rejected
-from .periodic import LONGEST, Pointwise, started, starts_in
+from .periodic import LONGEST, Pointwise, started, starts_in, widened
 from .products import MOST_POINTS, MOST_POWER, at_target, shown, traced
 from .ranges import Ends
-from .theorems import Line, Quantities, require
+from .theorems import Line, Orbit, Quantities, require
 
 Sets = dict[str, Domain]  # of every stance
 Gains = Mapping[tuple[str, ...], Fraction]  # of every step, or as many as are taken together
@@ -28,13 +28,15 @@ def around(
     g: Graph, part: str, rule: str, proves: str, used: list[Line], witness: dict[str, Any], claimed: Quantities
 ) -> Line | None:
     """A line about a closed walk of stances; None of another rule."""
+    rules: dict[str, Callable[..., tuple[Sets, tuple[str, ...], Orbit | bool]]]
     rules = {"graph-orbit": orbit, "graph-periodic": periodic, "graph-product": product}
     if rule not in rules:
         return None
     if part:
         raise Rejected(f"{rule}: not known of one stance or step alone")
-    sets, names, away = rules[rule](g, proves, used, witness, claimed)
-    return replace(Line(rule, proves, (), claimed), domains=sets, on_set=away, walk=names)
+    sets, names, more = rules[rule](g, proves, used, witness, claimed)
+    line = replace(Line(rule, proves, (), claimed), domains=sets, walk=names)
+    return replace(line, orbit=more, on_set=True) if isinstance(more, Orbit) else replace(line, on_set=more)
 
 
 def closed(g: Graph, names: Any, most: int) -> tuple[str, ...]:
@@ -118,7 +120,7 @@ def nearby(walk: Walk, sets: Sets, gains: Gains, states: list[list[Ends]], every
 
 def orbit(
     g: Graph, proves: str, used: list[Line], witness: dict[str, Any], claimed: Quantities
-) -> tuple[Sets, tuple[str, ...], bool]:
+) -> tuple[Sets, tuple[str, ...], Orbit]:
     """proofs/graph.md (8a): of one state, an interval whose ends a round leads to opposite sides of themselves."""
     used, flows = flowing(used)
     if proves != "orbit" or len(used) != 1 or len(g.first.states) != 1:
@@ -132,13 +134,14 @@ def orbit(
     low, high = (walk.follow([(x, x)])[-1][0] for x in (a, b))
     if not ((low[0] >= a and high[1] <= b) or (low[1] <= a and high[0] >= b)):
         raise Rejected("start: the ends are not led to opposite sides of themselves")
-    reached(claimed, walk.farthest(walk.follow([(a, b)])))
-    return sets, walk.names, True
+    states = walk.follow([(a, b)])
+    reached(claimed, walk.farthest(states))
+    return sets, walk.names, Orbit(walk.names, tuple(map(tuple, states[:-1])), witness["held"])
 
 
 def periodic(
     g: Graph, proves: str, used: list[Line], witness: dict[str, Any], claimed: Quantities
-) -> tuple[Sets, tuple[str, ...], bool]:
+) -> tuple[Sets, tuple[str, ...], Orbit]:
     """proofs/graph.md (8b): a state that a contracting round leads nearly back to itself has an orbit nearby."""
     used, flows = flowing(used)
     sets = kept(used)
@@ -155,8 +158,10 @@ def periodic(
     states, n = walk.follow(start), g.statement.horizon
     if len(walk.names) % n:
         raise Rejected("steps: a whole number of horizons")
-    reached(claimed, walk.farthest(states, nearby(walk, sets, gains, states, n), n))
-    return sets, walk.names, True
+    off = nearby(walk, sets, gains, states, n)
+    reached(claimed, walk.farthest(states, off, n))
+    found = tuple(widened(x, y) for x, y in zip(states[:-1:n], off, strict=True))
+    return sets, walk.names, Orbit(walk.names[::n], found, witness["held"])
 
 
 def reached(claimed: Quantities, distances: Quantities) -> None:

@@ -184,9 +184,7 @@ class GraphResults(Results):
             out = min([y for x in several if (y := x.out.get(r.state)) is not None], default=None)
             return verdict(proved, opposed(r.relation, Span(out, None), c), span)
         if r.kind == "push":
-            spans = [self.pushed_through(x, r.state) if r.during else x.pushes[r.state] for x in several]
-            span = least([x for x in spans if x is not None]) if spans and None not in spans else None
-            return verdict(span is not None and less(c[1], span.lower), False, span)
+            return self.push_outcome_in(several, r, c)
         if r.kind == "steps":
             return self.counted(several, r, c)
         if r.state is not None:  # by the best argument, for either name
@@ -253,6 +251,18 @@ class GraphResults(Results):
         of_norm = [x.radius if self.settled else NOTHING for x in several]
         span = least(of_norm if state is None else [x.radii[state] or NOTHING for x in several])
         return None if span == NOTHING else span
+
+    def push_outcome_in(self, several: list[StanceResults], r: Any, c: tuple[Fraction, Fraction]) -> Outcome:
+        """The least push of these stances; refuted by one from an orbit in any of them: proofs/orbit.md (5)."""
+        out: Fraction | None = None
+        if r.during:
+            spans = [self.pushed_through(x, r.state) for x in several]
+        else:
+            spans = [x.pushes[r.state] or Span(None, x.knocked[r.state]) for x in several]
+            out = min([y for x in several if (y := x.knocked[r.state]) is not None], default=None)
+        span = least([x or NOTHING for x in spans])
+        refuted = not self.any and opposed(r.relation, Span(out, None), c)
+        return verdict(less(c[1], span.lower), refuted, None if span == NOTHING else span)
 
     def pushed_through(self, x: StanceResults, s: str) -> Span | None:
         """proofs/stance.md (7): a push during a stance leads into the sets of those that may follow it."""

@@ -52,6 +52,7 @@ class SeveralResults(Results):
         route = self.routes.get(self.reported, Route())
         self.gain, self.residual, self.bound = self.slopes(self.reported), route.residual, route.bound
         self.push = None
+        self.knocked = {s: self.pushed_out(s) for s in self.states}
         self.pushes = {s: self.pushed_along(s) for s in self.states}
         self.out = {s: self.led_out(s) for s in self.states}
         self.radii = {s: self.radius_along(s) for s in self.states}
@@ -187,7 +188,7 @@ class SeveralResults(Results):
             inside = self.within()
             span = None if inside is None or self.radius.lower is None else self.radius.lower - inside
             left = None if span is None else span / self.metric.unit(self.states.index(s))[1]
-        return Span(left, None) if left is not None and left > 0 else None
+        return Span(left, self.knocked[s]) if left is not None and left > 0 else None
 
     def grown_to(self, s: str) -> list[Ends] | None:
         """What a push of a state within the stance has grown to by touchdown, in each state: proofs/stance.md (6)."""
@@ -229,9 +230,7 @@ class SeveralResults(Results):
         if r.kind == "radius":
             return self.wide_enough(r, c)
         if r.kind == "push":
-            left = self.left_for(self.grown_to(r.state)) if r.during else None
-            span = (None if left is None else Span(left, None)) if r.during else self.pushes[r.state]
-            return verdict(span is not None and less(c[1], span.lower), False, span)
+            return self.push_outcome(r, c)
         if r.kind == "steps":
             return self.stepped_along(r, c)
         if r.kind in ("bound", "sharp_bound") and r.state is not None:
@@ -248,6 +247,16 @@ class SeveralResults(Results):
         # in a metric the claim fixes, what is surely taken settles it; in another norm it might be less
         least = self.missed if self.stated() and r.kind == "residual" else None
         return verdict(proved, not self.any and opposed(r.relation, Span(None, least), c), found)
+
+    def push_outcome(self, r: Any, c: tuple[Fraction, Fraction]) -> Outcome:
+        """Within a stance a push changes other states as well, so that one at touchdown says nothing of it."""
+        if r.during:
+            left = self.left_for(self.grown_to(r.state))
+            return verdict(less(c[1], left), False, None if left is None else Span(left, None))
+        out = self.knocked[r.state]
+        span = self.pushes[r.state] or Span(None, out)
+        refuted = not self.any and opposed(r.relation, Span(out, None), c)
+        return verdict(less(c[1], span.lower), refuted, None if span == NOTHING else span)
 
     def wide_enough(self, r: Any, c: tuple[Fraction, Fraction]) -> Outcome:
         """A radius along a state; or in the norm, which says nothing where that may be as large as one likes."""

@@ -15,9 +15,10 @@ from .motion import PHASE, supported
 from .numerals import Rejected, quantity
 from .ranges import Ends, Evaluator
 from .reals import Scaled
-from .theorems import Line, Quantities, parted
+from .theorems import Line, Orbit, Quantities, parted
 
 LONGEST = 1000
+ALONE = ""  # the one stance of a claim that names none
 
 
 class Pointwise:
@@ -116,7 +117,9 @@ def variables_of(d: Derivation, timed: bool = False) -> dict[str, Ranged]:
     return {n: v for n, v in found.items() if n not in d.states}
 
 
-def periodic(d: Derivation, proves: str, used: list[Line], witness: dict[str, Any], claimed: Quantities) -> Domain:
+def periodic(
+    d: Derivation, proves: str, used: list[Line], witness: dict[str, Any], claimed: Quantities
+) -> tuple[Domain, Orbit]:
     """A state that a round leads nearly back to itself has a periodic orbit nearby: there, the errors are as large."""
     used, flows = parted(used)
     if proves != "periodic" or [x.proves for x in used] != ["invariant", "slope"]:
@@ -139,4 +142,11 @@ def periodic(d: Derivation, proves: str, used: list[Line], witness: dict[str, An
         errors = [(x[i][0] - course.centre[i][1], x[i][1] - course.centre[i][0]) for x in states[:-1:n]]
         if not claimed[s] <= max(map(nearest, errors)) - norm.support(i) * near:
             raise Rejected(f"{s}: more than what the orbit shows")
-    return domain
+    off = [norm.support(i) * near for i in range(len(d.states))]
+    found = tuple(widened(x, off) for x in states[:-1:n])
+    return domain, Orbit((ALONE,) * len(found), found, witness["held"])
+
+
+def widened(states: list[Ends], off: list[Fraction]) -> tuple[Ends, ...]:
+    """What surely holds a state that is no farther off than so."""
+    return tuple((low - y, high + y) for (low, high), y in zip(states, off, strict=True))

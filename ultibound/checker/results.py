@@ -433,8 +433,13 @@ class Results:
         """The least error of a state from which a run leaves the region, the others on target: proofs/orbit.md (4)."""
         return self.nearest_out(self.lines("escape", f"escape[{state}]"))
 
-    def nearest_out(self, escapes: list[tuple[int, Line]]) -> Fraction | None:
-        least = min(((x.concludes["from"], n) for n, x in escapes), default=None)
+    def pushed_out(self, state: str) -> Fraction | None:
+        """The least push of a state, on an orbit, after which a run leaves the region: proofs/orbit.md (5)."""
+        return self.nearest_out(self.lines("pushed", f"pushed[{state}]") if self.lasting else [], "push")
+
+    def nearest_out(self, lines: list[tuple[int, Line]], off: str = "from") -> Fraction | None:
+        """The least of what such runs start off."""
+        least = min(((x.concludes[off], n) for n, x in lines), default=None)
         if least is None:
             return None
         self.needed.add(least[1])

@@ -46,6 +46,7 @@ SHAPES: dict[str, tuple[tuple[str, ...], tuple[str, ...] | None]] = {
     "orbit": (("bits", "held", "start", "steps"), ("distance", "highest", "lowest")),
     "path": (("bits", "held", "start", "steps"), ("distance", "from", "steps")),
     "escape": (("bits", "held", "start", "steps"), ("from",)),
+    "pushed": (("at", "bits", "held", "start", "steps"), ("push",)),
     "ultimate-bound": ((), ("bound",)),
     "metric": (("inverse", "kind", "rows"), ()),
     "matrix": (("bits", "scales", "trees"), ("norm",)),
@@ -65,6 +66,7 @@ SHAPES: dict[str, tuple[tuple[str, ...], tuple[str, ...] | None]] = {
     "graph-periodic": (("bits", "held", "stances", "start", "steps"), None),  # one a state of each stance on the way
     "graph-path": (("bits", "held", "stances", "start", "steps"), ("distance", "from", "steps")),
     "graph-escape": (("bits", "held", "stances", "start", "steps"), ("from",)),
+    "graph-pushed": (("at", "bits", "held", "stances", "start", "steps"), ("push",)),
     "graph-product": (("bits", "held", "points", "power", "stances"), ("lower",)),
     "product": (("bits", "points", "power"), ("lower",)),
     "gains": (("gain", "lower", "upper"), ()),

@@ -1,4 +1,4 @@
-"""Rules path and escape of several states and of stances: trajectories that refute (proofs/orbit.md (3), (4))."""
+"""Rules path, escape and pushed of several states and of stances: runs that refute (proofs/orbit.md (3), (4), (5))."""
 
 from __future__ import annotations
 
@@ -15,22 +15,20 @@ from .derive import Derivation
 from .flows import Flows
 from .graph import Graph
 from .numerals import Rejected
-from .periodic import LONGEST, Pointwise
+from .periodic import ALONE, LONGEST, Pointwise
 from .ranges import Ends
 from .theorems import Line, Quantities, parted
-
-ALONE = ""  # the one stance of a claim that names none
 
 
 class Run:
     """The maps followed from a start at which one state is off its target, the others on theirs.
 
-    `names`: the stance at the start, and after every step.
+    `names`: the stance at the start, and after every step. `base`: what the start is off instead of the targets.
     """
 
     def __init__(
         self, stances: Mapping[str, Derivation], names: Sequence[str], flows: Mapping[str, Flows], state: str,
-        witness: dict[str, Any],
+        witness: dict[str, Any], base: Sequence[Ends] | None = None,
     ) -> None:  # fmt: skip
         a, self.names = arithmetic(witness["bits"]), names
         self.maps = {s: Pointwise(stances[s], a, flows.get(s), True) for s in dict.fromkeys(names)}
@@ -41,10 +39,11 @@ class Run:
         self.targets = {s: m.centre(m.kept(held)) for s, m in self.maps.items()}
         (self.error,) = numbers(witness["start"], 1)
         self.rank = stances[names[0]].states.index(state)
+        self.base = self.targets[names[0]] if base is None else base
 
     def follow(self) -> list[list[Ends]]:
         """The states from the first to the one after the last step."""
-        found = [list(self.targets[self.names[0]])]
+        found = [list(self.base)]
         low, high = found[0][self.rank]
         found[0][self.rank] = low + self.error, high + self.error
         for s, values in zip(self.names, self.values, strict=False):
@@ -81,26 +80,39 @@ def path(run: Run, claimed: Quantities) -> None:
 
 
 def escape(run: Run, claimed: Quantities) -> None:
-    """proofs/orbit.md (4): a trajectory that ends outside of the region, so that no kept set holds its start."""
+    """proofs/orbit.md (4), (5): a trajectory that ends outside of the region, so that no kept set holds its start."""
     if not run.outside(run.names[-1], run.follow()[-1]):
         raise Rejected("steps: the last state is not shown to be outside of the region")
 
 
-RULES = {"path": path, "escape": escape}
+RULES = {"path": path, "escape": escape, "pushed": escape}
+
+
+def met(line: Line, stance: str, witness: dict[str, Any]) -> Sequence[Ends]:
+    """The state of an orbit in a stance, from which a push leads on; what is held along it stays the same."""
+    orbit, at = line.orbit, witness["at"]
+    if orbit is None or type(at) is not int or not 0 <= at < len(orbit.states) or orbit.stances[at] != stance:
+        raise Rejected("at: the rank of a state of the orbit, in the stance of the push")
+    if not isinstance(witness["held"], dict) or any(witness["held"].get(n, x) != x for n, x in orbit.held.items()):
+        raise Rejected("held: other values than along the orbit")
+    return orbit.states[at]
 
 
 def followed(
     stances: Mapping[str, Derivation], names: Sequence[str], flows: Mapping[str, Flows], kind: str, proves: str,
-    witness: dict[str, Any], claimed: Quantities,
+    used: list[Line], witness: dict[str, Any], claimed: Quantities,
 ) -> None:  # fmt: skip
     """Raises Rejected unless a run shows what is claimed of it."""
     states = stances[names[0]].states
     about = re.fullmatch(rf"{kind}\[(\w+)\]", proves, re.ASCII)
     if about is None or about[1] not in states:
         raise Rejected(f"{kind}: of one of the states {', '.join(states)}")
-    run = Run(stances, names, flows, about[1], witness)
-    if not claimed["from"] >= abs(run.error):
-        raise Rejected("from: less than the error at the start")
+    if len(used) != (kind == "pushed"):
+        raise Rejected(f"{kind}: rests on flows of stances, and a push on the orbit before them")
+    run = Run(stances, names, flows, about[1], witness, met(used[0], names[0], witness) if used else None)
+    key = "push" if kind == "pushed" else "from"
+    if not claimed[key] >= abs(run.error):
+        raise Rejected(f"{key}: less than the error at the start")
     RULES[kind](run, claimed)
 
 
@@ -112,10 +124,10 @@ def running(
         return None
     used, flows = parted(used)
     steps = witness["steps"]
-    if used or not isinstance(steps, list) or len(steps) > LONGEST:
-        raise Rejected(f"{rule}: rests on no other line but the flow of a stance, and has up to {LONGEST} steps")
+    if not isinstance(steps, list) or len(steps) > LONGEST:
+        raise Rejected(f"steps: a list of up to {LONGEST}")
     names = [ALONE] * (len(steps) + 1)
-    followed({ALONE: d}, names, {} if flows is None else {ALONE: flows}, rule, proves, witness, claimed)
+    followed({ALONE: d}, names, {} if flows is None else {ALONE: flows}, rule, proves, used, witness, claimed)
     return Line(rule, proves, (), claimed)
 
 
@@ -127,12 +139,12 @@ def walking(
     if kind == rule or kind not in RULES:
         return None
     used, flows = flowing(used)
-    if part or used:
-        raise Rejected(f"{rule}: about all stances, and rests on no other lines but the flows of stances")
+    if part:
+        raise Rejected(f"{rule}: about all stances together")
     names = witness["stances"]
     if not isinstance(names, list) or not 0 < len(names) <= LONGEST + 1 or names[0] not in [*g.stances]:
         raise Rejected(f"stances: a list of 1 to {LONGEST + 1}")
     if any(step not in g.steps for step in pairwise(names)):
         raise Rejected("stances: a step that is not allowed")
-    followed(g.stances, names, flows, kind, proves, witness, claimed)
+    followed(g.stances, names, flows, kind, proves, used, witness, claimed)
     return replace(Line(rule, proves, (), claimed), walk=tuple(names))

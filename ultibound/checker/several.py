@@ -131,7 +131,8 @@ def concluded(
     if rule == "componentwise":
         return replace(line, domain=componentwise(d, proves, used, witness, claimed))
     if rule == "periodic":
-        return replace(line, domain=periodic(d, proves, used, witness, claimed))
+        kept, orbit = periodic(d, proves, used, witness, claimed)
+        return replace(line, domain=kept, orbit=orbit)
     if rule == "absorbed":
         return replace(line, domain=absorbed(d, proves, used, claimed))
     if rule == "product":

@@ -70,6 +70,12 @@ class StanceResults(SeveralResults):
         lines = self.all.lines("graph-escape", f"escape[{state}]")
         return self.nearest_out([(n, x) for n, x in lines if x.walk[0] == self.part])
 
+    def pushed_out(self, state: str) -> Fraction | None:
+        """By pushes in this stance."""
+        lines = self.all.lines("graph-pushed", f"pushed[{state}]")
+        lasting = all(x.lasting for x in self.all.each.values())
+        return self.nearest_out([(n, x) for n, x in lines if lasting and x.walk[0] == self.part], "push")
+
     def in_norm(self) -> Fraction | None:
         """The least bound in the norm of the stance."""
         return self.closest
@@ -81,6 +87,7 @@ class StanceResults(SeveralResults):
             if self.closest is not None:
                 by_norm = self.closest * self.metric.support(i)
                 self.bounds[s] = min(by_norm, self.bounds.get(s, by_norm))
+        self.knocked = {s: self.pushed_out(s) for s in self.states}
         self.pushes = {s: self.pushed_along(s) for s in self.states}
 
 

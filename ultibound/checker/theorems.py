@@ -5,12 +5,13 @@ from __future__ import annotations
 from dataclasses import dataclass, replace
 from fractions import Fraction
 from itertools import product
-from typing import NamedTuple
+from typing import Any, NamedTuple
 
 from .derive import Derivation, Domain
 from .flows import Flows
 from .matrices import Matrix, Metric
 from .numerals import Rejected
+from .ranges import Ends
 from .sector import RANGES
 
 Quantities = dict[str, Fraction]
@@ -41,6 +42,15 @@ class Piece:
 
 
 @dataclass(frozen=True)
+class Orbit:
+    """A periodic orbit: the stances it meets, an enclosure of its state in each, and the values held along it."""
+
+    stances: tuple[str, ...]
+    states: tuple[tuple[Ends, ...], ...]
+    held: dict[str, Any]
+
+
+@dataclass(frozen=True)
 class Line:
     rule: str
     proves: str
@@ -57,7 +67,8 @@ class Line:
     part: str = ""  # the stance, or the step from one to the next, that the line is about (graph.py)
     domains: dict[str, Domain] | None = None  # of all stances
     bases: tuple[tuple[Matrix, Matrix], ...] | None = None  # of entries of a step: before it, and after
-    walk: tuple[str, ...] = ()  # the stances that an orbit or a product goes round (cycles.py)
+    walk: tuple[str, ...] = ()  # the stances that an orbit, a product or a run goes through (cycles.py, runs.py)
+    orbit: Orbit | None = None  # of orbits of several states, and of stances (periodic.py, cycles.py)
 
 
 def parted(used: list[Line]) -> tuple[list[Line], Flows | None]:

@@ -51,17 +51,18 @@ class Ground:
 
 @dataclass(frozen=True, slots=True)
 class Start:
-    """Where runs start: in one of these stances, at some held values, one state off its target by so much."""
+    """Where runs start: in one of these stances, at some held values, one state off by so much from `base`."""
 
     held: Values
     centres: Mapping[str, Floats]
+    base: Mapping[str, Floats]
     about: Linear | None
     within: Sequence[str]
     state: int
     size: Fraction
 
     def states(self, stance: str, error: Fraction) -> Floats:
-        x: Floats = self.centres[stance].copy()
+        x: Floats = self.base[stance].copy()
         x[self.state] += to_float(error)
         return x
 
@@ -105,23 +106,37 @@ def leaving(ground: Ground, within: Sequence[str], state: int, most: Fraction) -
     """A run that leaves the regions from an error below `most`, as small a one as halving finds."""
     found: Run | None = None
     for start in _starts(ground, within, state, most):
-        most = (most if found is None else abs(found.error)) * Fraction(NEARER)
-        out = _out(ground, replace(start, size=most))
-        low = Fraction(0)
-        for _ in range(HALVINGS if out is not None else 0):
-            found = out or found
-            middle = Fraction(to_float((low + abs(found.error)) / 2)) if found is not None else low
-            out = _out(ground, replace(start, size=middle))
-            low = middle if out is None else low
-        found = out or found
+        found = _nearest(ground, start, most if found is None else abs(found.error)) or found
     return found
 
 
-def _starts(ground: Ground, within: Sequence[str], state: int, size: Fraction) -> Iterator[Start]:
-    for held in held_choices(ground.maps):
+def pushed(ground: Ground, stance: str, base: Floats, held: Values, state: int, most: Fraction) -> Run | None:
+    """A run that leaves the regions after a push below `most` of a state that is met in a stance."""
+    for start in _starts(ground, [stance], state, most, held):
+        return _nearest(ground, replace(start, base={stance: base}), most)
+    return None
+
+
+def _nearest(ground: Ground, start: Start, most: Fraction) -> Run | None:
+    """A run that leaves the regions, from as little off as halving finds, and less than `most`."""
+    size, low, found = most * Fraction(NEARER), Fraction(0), None
+    for _ in range(HALVINGS):
+        out = _out(ground, replace(start, size=size))
+        found, low = (found, size) if out is None else (out, low)
+        if found is None:
+            return None
+        size = Fraction(to_float((low + abs(found.error)) / 2))
+    return found
+
+
+def _starts(
+    ground: Ground, within: Sequence[str], state: int, size: Fraction, known: Values | None = None
+) -> Iterator[Start]:
+    for choice in held_choices(ground.maps):
+        held = choice | (known or {})
         centres = {s: np.array(m.target(held)) for s, m in ground.maps.items()}
         if all(np.isfinite(c).all() for c in centres.values()):
-            yield Start(held, centres, linear(ground.maps, ground.then, held), within, state, size)
+            yield Start(held, centres, centres, linear(ground.maps, ground.then, held), within, state, size)
 
 
 def _out(ground: Ground, start: Start) -> Run | None:

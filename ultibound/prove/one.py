@@ -20,9 +20,9 @@ from ..checker.derive import Derivation
 from ..checker.derive import varied as statement_varied
 from ..checker.flows import Flows
 from ..checker.graph_outcomes import results_of
+from ..checker.periodic import ALONE
 from ..checker.reals import Undefined
 from ..checker.rules import Rejected
-from ..checker.runs import ALONE
 from ..checker.sector import applies
 from ..checker.theorems import Variant, levels, movement, sharpest
 from ..claim import Bad, Claim, ClaimError

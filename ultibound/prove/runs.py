@@ -5,6 +5,7 @@ from __future__ import annotations
 from collections.abc import Mapping, Sequence
 from fractions import Fraction
 from math import floor
+from typing import Any
 
 import numpy as np
 
@@ -14,6 +15,7 @@ from ..certificate.enclosing import Encloser
 from ..certificate.lines import Writer
 from ..certificate.runs import run
 from ..checker.derive import Derivation
+from ..checker.grammar import constant as checked
 from ..checker.graph_outcomes import results_of
 from ..checker.periodic import LONGEST
 from ..claim import Claim
@@ -22,7 +24,7 @@ from ..claim.model import Requirement
 from ..claim.obligations import Obligations, together
 from ..contraction.norms import Matrices
 from ..contraction.rounds import Map
-from ..contraction.runs import Ground, leaving, slow
+from ..contraction.runs import Ground, Run, leaving, pushed, slow
 
 ENOUGH = 60  # steps of the longest path, where no more are asked for
 Stance = tuple[Claim, Obligations, Encloser, Derivation]
@@ -48,7 +50,7 @@ def map_of(claim: Claim, o: Obligations, ranges: Encloser) -> Map:
 
 def run_out(
     claim: Claim, variant: int, w: Writer, stances: Mapping[str, Stance], then: Mapping[str, Sequence[str]],
-    until: float, kinds: Sequence[str] = ("steps", "radius"),
+    until: float, kinds: Sequence[str] = ("steps", "radius", "push"),
 ) -> None:  # fmt: skip
     """Appends runs for the requirements of these kinds that the lines so far leave undecided.
 
@@ -56,7 +58,7 @@ def run_out(
     asked = [
         (n, r)
         for n, r in enumerate(claim.requirements, 1)
-        if r.kind in kinds and r.state is not None and (n == variant if variant else not r.over)
+        if r.kind in kinds and r.state is not None and not r.during and (n == variant if variant else not r.over)
     ]
     if not asked or any(ranges.interrupted for _, _, ranges, _ in stances.values()):
         return
@@ -80,12 +82,41 @@ def _search(claim: Claim, w: Writer, ground: Ground, within: Sequence[str], r: R
         out = leaving(ground, within, state, c[0]) if c[0] > 0 else None
         if out is not None:
             run(w, "escape", r.state, out)
+    elif r.kind == "push":
+        _knocked(w, ground, within, r.state, c[0])
     elif r.start is not None and r.end is not None:
         start, end = constant(r.start, claim.values)[0], constant(r.end, claim.values)[1]
         most = min(LONGEST, max(ENOUGH, floor(c[1]) + 1))
         path = slow(ground, within, state, start, to_float(end), most) if start >= 0 else None
         if path is not None:
             run(w, "path", r.state, path)
+
+
+def _knocked(w: Writer, ground: Ground, within: Sequence[str], name: str, most: Fraction) -> None:
+    """The least push found that leads out, of the states on proved orbits that are farthest to either side."""
+    best: tuple[Run, int, int] | None = None
+    state = next(iter(ground.maps.values())).states.index(name)
+    for n, orbit in [(n, x.orbit) for n, x in w.proof.lines.items() if x.orbit is not None and most > 0]:
+        held = _values(w.derivation, orbit.held)
+        for s in within:
+            ranks = [k for k, t in enumerate(orbit.stances) if t == s]
+            ends = sorted(ranks, key=lambda k: sum(orbit.states[k][state]))
+            for k in dict.fromkeys([*ends[:1], *ends[-1:]]):
+                base = np.array([to_float((low + high) / 2) for low, high in orbit.states[k]])
+                found = pushed(ground, s, base, held, state, most if best is None else abs(best[0].error))
+                best = best if found is None else (found, n, k)
+    if best is not None:
+        run(w, "pushed", name, best[0], best[1], best[2])
+
+
+def _values(d: Derivation, texts: Mapping[str, Any]) -> dict[str, Fraction]:
+    """What is held along an orbit, as numbers."""
+    found = {}
+    for n, text in texts.items():
+        q = d.statement.uncertain[n]
+        cells = [checked(e, d.statement.values) for e in q.values or ()]
+        found[n] = sum(cells[int(text[1:])], Fraction(0)) / 2 if cells else Fraction(text)
+    return found
 
 
 def _region(d: Derivation) -> tuple[Floats, Floats]:

@@ -109,7 +109,7 @@ class SeveralAttempt(Attempt):
         for k, r in enumerate(self.claim.requirements, 1):
             if r.kind in RANGED and not self.variant:
                 self._range(k, through, way, self.domain, on)
-        self._run_out(("steps", "radius"))
+        self._run_out(("steps", "radius", "push"))
 
     def _known_routes(self) -> list[str]:
         """The routes that gain and residual may come from, the one that is asked for first.
