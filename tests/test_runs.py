@@ -184,3 +184,39 @@ def test_a_stance_of_continuous_time() -> None:
     for rule in ("path", "escape"):
         (line,) = lines(entries, rule)
         assert [entries["proof"][n - 1]["proves"] for n in line["uses"]] == ["flow"]
+
+
+def test_pushes_from_an_orbit_of_several_states() -> None:
+    """x⁺ = x/2 + d, y⁺ = y/2 + x/4: d = 1/10 holds x at 1/5 and y at 1/10, so x pushed by more than 7/5 leaves [-8/5, 8/5]."""
+    asked = ("push(x) >= 1.45", "push(x) >= 1.3", "push(y) >= 1.9", "push(y) >= 1.4")
+    entries = two(("0.5*x + d", "0.5*y + 0.25*x"), *asked, x="[-1.6, 1.6]", y="[-2, 2]")
+    assert verdicts(entries["results"]) == ["refuted", "proved", "undecided", "proved"]
+    (line,) = (x for x in lines(entries, "pushed") if x["proves"] == "pushed[x]")
+    assert Q(7, 5) < Q(line["concludes"]["push"]) < Q(7, 5) + Q(1, 1000)
+    assert entries["results"]["requirements"][0]["limited_by"].startswith("x of an orbit pushed by 1.4")
+
+
+def test_pushes_from_an_orbit_through_stances() -> None:
+    """In turns x⁺ = x/2 + w/10 and −x/4 + w/20: ±3/35 on the left and ±1/7 on the right, of [-1, 1] and [-2, 2]."""
+    stances = {"left": ("right", "[-1, 1]", "0", "x/2 + w/10"), "right": ("left", "[-2, 2]", "0", "-x/4 + w/20")}
+    left, right = Q(3, 35), Q(1, 7)
+    asked = ["push(x) >= 0.95", '"push(x) >= 0.95"\nin = "right"', '"push(x) >= 1.9"\nin = "right"']
+    entries = proved(graph(stances, *asked)).entries
+    assert verdicts(entries["results"]) == ["refuted", "proved", "refuted"]
+    for stance_, edge, far in (("left", 1, left), ("right", 2, right)):
+        (line,) = (x for x in lines(entries, "graph-pushed") if x["witness"]["stances"][0] == stance_)
+        assert edge - far - Q(1, 10**6) < Q(line["concludes"]["push"]) < edge - far + Q(1, 1000)
+
+
+def test_a_push_that_is_led_out_later() -> None:
+    """Where a ball is kept and the region is not: pushed within the region, the state is led out of it by other steps."""
+    maps = ("0.5*x + 0.5*x**3 + w/50", "0.25*y")
+    edge = float(max(np.roots([0.5, 0, -0.5, 0.02]).real))
+    entries = two(
+        maps, "push(x) >= 1.2", "push(x) >= 0.1", top="shrink = true\n", x="[-2, 2]", y="[-2, 2]", w="w = [-1, 1]"
+    )
+    assert verdicts(entries["results"]) == ["undecided", "proved"]  # another set might hold it
+    entries = two(maps, "push(x) >= 1.2", x="[-2, 2]", y="[-2, 2]", w="w = [-1, 1]")
+    assert verdicts(entries["results"]) == ["refuted"]
+    (line,) = lines(entries, "pushed")
+    assert edge * 0.9 < float(Q(line["concludes"]["push"])) < 1.1 and line["witness"]["steps"]

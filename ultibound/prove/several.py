@@ -535,8 +535,10 @@ class SeveralAttempt(Attempt):
         bits = 0 if self.writer.exact("misses", uses[0]) else ORBIT_BITS
         steps = map_of(self.claim, self.obligations, self.ranges)
         for course in courses(steps, self.gap, self.claim.horizon, self.ranges.until - self.ranges.spent):
-            with suppress(Undefined, Rejected):
-                self.writer.periodic(course.start, course.held, course.steps, uses, bits)
+            for precision in dict.fromkeys((bits, ORBIT_BITS)):  # fractions may grow too long
+                with suppress(Undefined, Rejected):
+                    self.writer.periodic(course.start, course.held, course.steps, uses, precision)
+                    break
 
     def _remarks(self) -> list[tuple[str | None, bool]]:
         return SeveralRemarks(

@@ -35,6 +35,7 @@ PAGES = {
     "orbit": ("orbit.md", "a periodic orbit: the state surely goes this far, again and again"),
     "path": ("orbit.md", "a trajectory that is still this far out after its steps"),
     "escape": ("orbit.md", "a trajectory that leaves the region, from a start this near its target"),
+    "pushed": ("orbit.md", "a push from an orbit after which a trajectory leaves the region"),
     "metric": ("matrix.md", "an exact norm, with its exact inverse"),
     "matrix": ("matrix.md", "the norm of all matrices over the boxes of a tree"),
     "entries": ("matrix.md", "every entry of all matrices over the boxes of a tree"),
@@ -56,6 +57,7 @@ PAGES = {
         "orbit.md",
         "a trajectory through stances that leaves the region, from a start this near its target",
     ),
+    "graph-pushed": ("orbit.md", "a push from an orbit after which a trajectory through stances leaves the region"),
     "graph-product": ("graph.md", "Jacobians around a closed walk of stances, whose product grows in every norm"),
 }
 GROUPS = (
@@ -86,7 +88,7 @@ GROUPS = (
         ),
     ),
     ("Bounds in the long run", ("bound", "componentwise", "split-componentwise", "absorbed", "attracting")),
-    ("Orbits and paths: what surely happens", ("orbit", "path", "periodic", "escape")),
+    ("Orbits and paths: what surely happens", ("orbit", "path", "periodic", "escape", "pushed")),
     ("Requirements about ranges", ("require",)),
     ("Pieces of a gain: the same proof for other gains", ("gains",)),
 )
