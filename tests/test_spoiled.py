@@ -167,6 +167,10 @@ x = "h"
 y = 0
 [[require]]
 that = "gain < 1"
+[[require]]
+that = "steps(x, 0.5, 0.3) <= 1"
+[[require]]
+that = "radius(y) >= 0.99"
 [effort]
 gap = 0.1
 """
@@ -420,6 +424,7 @@ MORE = {
     "highest": 1,
     "lowest": -1,
     "from": -1,
+    "push": -1,
     "steps": 1,
     "error": -1,
     "outer": -1,
@@ -529,6 +534,8 @@ def test_a_rule_or_use_exchanged_is_rejected(entries: dict[str, Any]) -> None:
             "shells",
             "orbit",
             "path",
+            "escape",
+            "pushed",
             "ultimate-bound",
             "squares",
             "trajectory",
