@@ -105,7 +105,7 @@ class StanceRemarks:
 
     def open(self, r: Requirement, outcome: Outcome) -> bool:
         """Whether what is proved and what is attained leave room for the constant."""
-        if r.constant is None or outcome.value is None or r.kind == "steps":  # runs are looked for at any gap
+        if r.constant is None or outcome.value is None or r.kind in ("steps", "push"):  # runs are found at any gap
             return False
         low, high = constant(r.constant, self.claim.values)
         least, most = outcome.value.lower, outcome.value.upper
