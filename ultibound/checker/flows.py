@@ -325,7 +325,7 @@ class Flows:
                 self._timed.clear()
             columns = self._columns(cell, rank, entry)
             count = len(next(iter(columns.values())))
-            kept = min(2, count) if end else count  # nothing is asked there beyond the first derivative
+            kept = 2 if end else count  # nothing is asked there beyond the first derivative
             poly = tuple((n, *e) for e in columns for n in range(count)), [x for c in columns.values() for x in c]
             (_, moved), extra = shifted_to(poly, 0, time, self.bits, kept)
             self._timed[key] = tuple(columns), [moved[k : k + kept] for k in range(0, len(moved), kept)], extra
