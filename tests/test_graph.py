@@ -129,7 +129,9 @@ def test_steps_are_the_worst_of_all_orders_allowed() -> None:
             n += 1
         worst.append(max((i + 1 for i, y in enumerate(levels) if y > Q(1, 10)), default=0))
     assert worst == [5, 6]
-    assert verdicts(proved(graph(stances, *asked)).results) == ["proved", "undecided", "proved", "proved", "undecided"]
+    found = proved(graph(stances, *asked)).results
+    assert verdicts(found) == ["proved", "refuted", "proved", "proved", "refuted"]
+    assert [found["requirements"][n]["value"] for n in (1, 4)] == [{"lower": str(n), "upper": str(n)} for n in worst]
 
 
 def test_balls_that_are_kept_where_the_regions_are_not() -> None:
