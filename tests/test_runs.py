@@ -220,3 +220,9 @@ def test_a_push_that_is_led_out_later() -> None:
     assert verdicts(entries["results"]) == ["refuted"]
     (line,) = lines(entries, "pushed")
     assert edge * 0.9 < float(Q(line["concludes"]["push"])) < 1.1 and line["witness"]["steps"]
+
+
+def test_what_leaves_from_the_target_itself() -> None:
+    entries = two(("1.5*x + d", "0.5*y"), "radius(x) > 0", "radius(x) >= 0", "radius(x) >= 1")
+    assert verdicts(entries["results"]) == ["refuted", "undecided", "refuted"]
+    assert [x["concludes"]["from"] for x in lines(entries, "escape")] == ["0"]

@@ -119,14 +119,15 @@ def pushed(ground: Ground, stance: str, base: Floats, held: Values, state: int, 
 
 def _nearest(ground: Ground, start: Start, most: Fraction) -> Run | None:
     """A run that leaves the regions, from as little off as halving finds, and less than `most`."""
-    size, low, found = most * Fraction(NEARER), Fraction(0), None
-    for _ in range(HALVINGS):
-        out = _out(ground, replace(start, size=size))
-        found, low = (found, size) if out is None else (out, low)
+    low, found = Fraction(0), _out(ground, replace(start, size=most * Fraction(NEARER)))
+    at_once = None if found is None else _out(ground, replace(start, size=low))
+    for _ in range(HALVINGS if at_once is None else 0):
         if found is None:
             return None
         size = Fraction(to_float((low + abs(found.error)) / 2))
-    return found
+        out = _out(ground, replace(start, size=size))
+        found, low = (found, size) if out is None else (out, low)
+    return at_once or found
 
 
 def _starts(

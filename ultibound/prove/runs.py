@@ -79,7 +79,7 @@ def _search(claim: Claim, w: Writer, ground: Ground, within: Sequence[str], r: R
         return
     state, c = next(iter(ground.maps.values())).states.index(r.state), constant(r.constant, claim.values)
     if r.kind == "radius":
-        out = leaving(ground, within, state, c[0]) if c[0] > 0 else None
+        out = leaving(ground, within, state, c[0]) if c[0] >= 0 else None
         if out is not None:
             run(w, "escape", r.state, out)
     elif r.kind == "push":
@@ -96,7 +96,7 @@ def _knocked(w: Writer, ground: Ground, within: Sequence[str], name: str, most: 
     """The least push found that leads out, of the states on proved orbits that are farthest to either side."""
     best: tuple[Run, int, int] | None = None
     state = next(iter(ground.maps.values())).states.index(name)
-    for n, orbit in [(n, x.orbit) for n, x in w.proof.lines.items() if x.orbit is not None and most > 0]:
+    for n, orbit in [(n, x.orbit) for n, x in w.proof.lines.items() if x.orbit is not None and most >= 0]:
         held = _values(w.derivation, orbit.held)
         for s in within:
             ranks = [k for k, t in enumerate(orbit.stances) if t == s]
