@@ -43,6 +43,7 @@ class Ground:
     then: Mapping[str, Sequence[str]]
     regions: Mapping[str, tuple[Floats, Floats]]
     until: float  # an instant of time.monotonic
+    away: int = AWAY  # steps that a run may take to leave the regions: none where these are kept
 
     def outside(self, stance: str, x: Floats) -> bool:
         low, high = self.regions[stance]
@@ -144,9 +145,9 @@ def _out(ground: Ground, start: Start) -> Run | None:
     """A run that leaves the regions from an error of that size."""
     n = len(start.centres[start.within[0]])
     courses = [Course(e, [s], [], [start.states(s, e)]) for s in start.within for e in (start.size, -start.size)]
-    if not any(ground.outside(x.stances[0], x.states[0]) for x in courses):
+    if ground.away and not any(ground.outside(x.stances[0], x.states[0]) for x in courses):
         aims = [(k, sign) for k in range(n) for sign in (1.0, -1.0)]
-        courses = _steered(ground, start, [*aims, None], AWAY, leave=True)
+        courses = _steered(ground, start, [*aims, None], ground.away, leave=True)
         if not any(ground.outside(x.stances[-1], x.states[-1]) for x in courses):
             ends = [_farthest(ground, start, k, sign) for k, sign in aims]
             courses = [_followed(ground, start, x) for x in ends if x is not None]
@@ -181,7 +182,7 @@ def _longest(ground: Ground, start: Start, sign: float, end: float, most: int) -
 def _farthest(ground: Ground, start: Start, aim: int, sign: float) -> End | None:
     """The end of a walk that should lead a state farthest for its room."""
     room = {s: max(abs(float(x[aim] - c[aim])) for x in ground.regions[s]) for s, c in start.centres.items()}
-    return max(_ends(ground, start, aim, sign, AWAY, room), key=lambda x: _hope(x, start), default=None)
+    return max(_ends(ground, start, aim, sign, ground.away, room), key=lambda x: _hope(x, start), default=None)
 
 
 def _hope(x: End, start: Start) -> float:

@@ -18,6 +18,7 @@ from ..checker.derive import Derivation
 from ..checker.grammar import constant as checked
 from ..checker.graph_outcomes import results_of
 from ..checker.periodic import LONGEST
+from ..checker.theorems import Orbit
 from ..claim import Claim
 from ..claim.constants import constant
 from ..claim.model import Requirement
@@ -27,6 +28,7 @@ from ..contraction.rounds import Map
 from ..contraction.runs import Ground, Run, leaving, pushed, slow
 
 ENOUGH = 60  # steps of the longest path, where no more are asked for
+PUSHED = 2  # places on orbits, the nearest to the edge of the region first
 Stance = tuple[Claim, Obligations, Encloser, Derivation]
 
 
@@ -62,13 +64,13 @@ def run_out(
     ]
     if not asked or any(ranges.interrupted for _, _, ranges, _ in stances.values()):
         return
-    found = results_of(w.proof).requirements
-    asked = [(n, r) for n, r in asked if found[n - 1].verdict == "undecided"]
+    found = results_of(w.proof)
+    asked = [(n, r) for n, r in asked if found.requirements[n - 1].verdict == "undecided"]
     if not asked:
         return
     maps = {s: map_of(c, o, ranges) for s, (c, o, ranges, _) in stances.items()}
     regions = {s: _region(d) for s, (*_, d) in stances.items()}
-    ground = Ground(maps, then, regions, until)
+    ground = Ground(maps, then, regions, until, *([0] if found.kind == "region" else []))
     for _, r in asked:
         within = [s for s in stances if r.stance in (None, s)]
         _search(claim, w, ground, within, r)
@@ -93,18 +95,22 @@ def _search(claim: Claim, w: Writer, ground: Ground, within: Sequence[str], r: R
 
 
 def _knocked(w: Writer, ground: Ground, within: Sequence[str], name: str, most: Fraction) -> None:
-    """The least push found that leads out, of the states on proved orbits that are farthest to either side."""
+    """The least push found that leads out, of states on proved orbits."""
     best: tuple[Run, int, int] | None = None
     state = next(iter(ground.maps.values())).states.index(name)
+    places = list[tuple[float, int, int, str, Orbit]]()
     for n, orbit in [(n, x.orbit) for n, x in w.proof.lines.items() if x.orbit is not None and most >= 0]:
+        for k, s in enumerate(orbit.stances):
+            x, (low, high) = (
+                to_float(sum(orbit.states[k][state], Fraction(0)) / 2),
+                (y[state] for y in ground.regions[s]),
+            )
+            places += [(float(min(high - x, x - low)), n, k, s, orbit)] if s in within else []
+    for _, n, k, s, orbit in sorted(places, key=lambda x: x[:3])[:PUSHED]:
+        base = np.array([to_float((low + high) / 2) for low, high in orbit.states[k]])
         held = _values(w.derivation, orbit.held)
-        for s in within:
-            ranks = [k for k, t in enumerate(orbit.stances) if t == s]
-            ends = sorted(ranks, key=lambda k: sum(orbit.states[k][state]))
-            for k in dict.fromkeys([*ends[:1], *ends[-1:]]):
-                base = np.array([to_float((low + high) / 2) for low, high in orbit.states[k]])
-                found = pushed(ground, s, base, held, state, most if best is None else abs(best[0].error))
-                best = best if found is None else (found, n, k)
+        found = pushed(ground, s, base, held, state, most if best is None else abs(best[0].error))
+        best = best if found is None else (found, n, k)
     if best is not None:
         run(w, "pushed", name, best[0], best[1], best[2])
 
