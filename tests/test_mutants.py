@@ -29,6 +29,7 @@ from tests.checker import (
     test_several_boundaries,
     test_squares_boundaries,
     test_stance_boundaries,
+    test_vertices_boundaries,
     test_ways_boundaries,
 )
 from tests.mutants import EQUIVALENT, Battery, Copies, Mutant, campaign, mutants, table
@@ -54,7 +55,7 @@ PROOFS = (
 )
 STANCES = ("calculus", "motion", "pushes", "signals", "models", "rates", "flows")
 NORMS = ("matrices", "inequality")
-SEVERAL = ("jacobians", "several", "outcomes", "periodic", "products", "absorbed", "attracting")
+SEVERAL = ("jacobians", "several", "outcomes", "periodic", "products", "absorbed", "attracting", "vertices")
 GRAPHS = ("graph", "graph_outcomes", "stance_outcomes", "cycles", "cycle_outcomes")
 SQUARES = ("squares", "polynomials")
 GAINS = ("gains",)
@@ -89,6 +90,7 @@ def batteries(copies: Copies) -> dict[str, Battery]:
         | test_product_boundaries.CASES
         | test_absorbed_boundaries.CASES
         | test_attracting_boundaries.CASES
+        | {f"vertices: {n}": q for n, q in test_vertices_boundaries.CASES.items()}
     )
     several = Battery(test_several_boundaries.CASES | orbits | horizon_cases | pushes_cases | squares_cases)
     stance_cases = {f"stance: {n}": q for n, q in test_stance_boundaries.CASES.items()}
@@ -98,7 +100,9 @@ def batteries(copies: Copies) -> dict[str, Battery]:
     several_cases = {f"several: {n}": q for n, q in test_several_boundaries.CASES.items()}
     graph_cases = {f"graph: {n}": q for n, q in test_graph_boundaries.CASES.items()}
     gain_cases = {f"gains: {n}": q for n, q in test_gains_boundaries.CASES.items()}
-    attracting_cases = {f"attracting: {n}": q for n, q in test_attracting_boundaries.CASES.items()}
+    attracting_cases = {
+        f"attracting: {n}": q for n, q in (test_attracting_boundaries.CASES | test_vertices_boundaries.CASES).items()
+    }
     more = several_cases | graph_cases | horizon_cases | squares_cases | gain_cases | attracting_cases
     proofs = Battery(test_boundaries.CASES | stance_cases | more)
     of_norms, of_reading = dict.fromkeys(NORMS, norms), dict.fromkeys(READING, reading)
