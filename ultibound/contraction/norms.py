@@ -46,11 +46,15 @@ class Entry:
 
 @dataclass(frozen=True, slots=True)
 class Norm:
-    """‖e‖ = |V e| in floating point; without an `inverse` L, of vectors."""
+    """‖e‖ = |V e| in floating point; without an `inverse` L, of vectors.
+
+    With `many` more rows than states the vertices of the ball stand for L, (n, vertices): proofs/matrix.md (7).
+    """
 
     rows: Floats
     inverse: Floats | None
     round: bool  # Euclidean length, else the largest magnitude
+    many: bool = False
 
     @property
     def right(self) -> Floats:
@@ -169,6 +173,8 @@ def over_boxes(norm: Norm, a: Affine) -> tuple[Floats, Floats]:
     with np.errstate(invalid="ignore", over="ignore"):
         centre, slopes = norm.rows @ a.centre @ norm.right, norm.rows @ a.slopes @ norm.right
         rest = np.abs(norm.rows) @ a.rest @ np.abs(norm.right)
+    if norm.many:
+        return _by_vertices(centre, slopes, rest)
     size = np.abs(slopes).sum(axis=(2, 3))
     order = np.argsort(-size.max(axis=0, initial=0.0), kind="stable")
     moving = [int(k) for k in order if size[:, k].max(initial=0.0) > 0]
@@ -196,6 +202,16 @@ def over_boxes(norm: Norm, a: Affine) -> tuple[Floats, Floats]:
     return np.where(np.isfinite(found), found, np.inf), where
 
 
+def _by_vertices(centre: Floats, slopes: Floats, rest: Floats) -> tuple[Floats, Floats]:
+    """As `over_boxes`: each entry of V A Q on its own, all signs at once."""
+    boxes = len(centre)
+    each = (np.abs(centre) + np.abs(slopes).sum(axis=1) + rest).reshape(boxes, -1)
+    rows, best = np.arange(boxes), np.argmax(np.where(np.isnan(each), np.inf, each), axis=1)
+    found, middle = each[rows, best], centre.reshape(boxes, -1)[rows, best]
+    signs = np.sign(slopes.reshape(*slopes.shape[:2], -1)[rows, :, best]) * np.where(middle < 0, -1.0, 1.0)[:, None]
+    return np.where(np.isfinite(found), found, np.inf), np.where(np.isfinite(signs), signs, 0.0)
+
+
 def _further(norm: Norm, centre: Floats, slopes: Floats, where: Floats) -> None:
     """Signs of the variables that no corner tells apart: each the one that makes the norm larger."""
     here = centre + np.einsum("bk,bkij->bij", where, slopes)
@@ -213,6 +229,8 @@ def worth(norm: Norm, a: Affine) -> Floats:
     """What bisecting each variable may gain, (boxes, variables), seen in the norm."""
     with np.errstate(invalid="ignore"):
         seen = np.abs(norm.rows) @ a.lost @ np.abs(norm.right)
+    if norm.many:
+        seen = seen.max(axis=3, keepdims=True)
     found: Floats = seen.sum(axis=(2, 3)) if norm.round else seen.sum(axis=3).max(axis=2)
     return np.where(np.isnan(found), np.inf, found)
 
@@ -234,6 +252,8 @@ def size(norm: Norm, m: Floats) -> Floats:
     """The norm of matrices (points, n, c)."""
     with np.errstate(invalid="ignore", over="ignore"):
         b = norm.rows @ m @ norm.right
+    if norm.many:
+        return np.asarray(np.abs(b).max(axis=(1, 2)), dtype=np.float64)
     return _length(b) if norm.round else np.abs(b).sum(axis=2).max(axis=1)
 
 
@@ -242,6 +262,8 @@ def direction(norm: Norm, m: Floats) -> tuple[float, ...]:
     if norm.inverse is None:
         return (1.0,)
     b = norm.rows @ m @ norm.inverse
+    if norm.many:
+        return tuple(float(x) for x in norm.inverse[:, int(np.argmax(np.abs(b).max(axis=0)))])
     row = b[int(np.argmax(np.abs(b).sum(axis=1)))]
     y = np.linalg.svd(b)[2][0] if norm.round else np.where(row < 0, -1.0, 1.0)
     return tuple(float(x) for x in norm.inverse @ y)
