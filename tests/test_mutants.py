@@ -16,6 +16,7 @@ from tests.checker import (
     test_absorbed_boundaries,
     test_attracting_boundaries,
     test_boundaries,
+    test_branches_boundaries,
     test_cycle_boundaries,
     test_gains_boundaries,
     test_graph_boundaries,
@@ -91,6 +92,7 @@ def batteries(copies: Copies) -> dict[str, Battery]:
         | test_absorbed_boundaries.CASES
         | test_attracting_boundaries.CASES
         | {f"vertices: {n}": q for n, q in test_vertices_boundaries.CASES.items()}
+        | {f"branches: {n}": q for n, q in test_branches_boundaries.CASES.items()}
     )
     several = Battery(test_several_boundaries.CASES | orbits | horizon_cases | pushes_cases | squares_cases)
     stance_cases = {f"stance: {n}": q for n, q in test_stance_boundaries.CASES.items()}

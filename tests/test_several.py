@@ -209,3 +209,13 @@ def test_ball_of_many_sides(aside: str, kept: bool) -> None:
     for s, far in zip("xy", exact, strict=True):
         least, most = ends(r["states"][s]["bound"])
         assert 0.98 * far <= least <= far * (1 + 1e-9) and far * (1 - 1e-9) <= most <= 1.002 * far
+
+
+def test_slopes_on_both_sides_of_a_corner() -> None:
+    """The sign of x − y is the same in all four entries: each on its own they make a gain of 2 in the same norm."""
+    text = SIDES.replace("[-0.6, 0.6]", "[-1, 1]").replace("{aside} - 0.12*x - 1.37*y + d", "0.45*abs(x - y) + d")
+    text = text.replace("0.43*x - 0.04*y", "0.1*y - 0.45*abs(x - y)").replace('"settles"', '"gain < 1"')
+    r = proved(text).results
+    sides = [np.array([[s, -s], [-s, 0.1 + s]]) for s in (0.45, -0.45)]
+    rate = max(np.abs(np.linalg.eigvals(a)).max() for a in sides)
+    assert verdicts(r) == ["proved"] and rate <= float(ends(r["gain"])[1]) <= rate + 2e-3

@@ -58,10 +58,16 @@ def proposed(a: SeveralAttempt) -> Proposal | None:
 
 def pieces_of(matrices: Matrices, trees: tuple[str, ...]) -> Pieces:
     """[J | m] over the leaves of trees, in floating point."""
-    leaves = [leaf for leaf, _ in boxes(list(product(*(v.cells for v in matrices.variables))), list(trees))]
-    ends: Floats = np.array([[[to_float(x) for x in side] for side in leaf] for leaf in leaves])
-    found = matrices.affine(ends[:, :, 0], ends[:, :, 1])
-    return Pieces(found.centre, found.slopes, found.rest)
+    leaves = list(boxes(list(product(*(v.cells for v in matrices.variables))), list(trees)))
+    ends: Floats = np.array([[[to_float(x) for x in side] for side in leaf] for leaf, _ in leaves])
+    low, high, branched = ends[:, :, 0], ends[:, :, 1], np.array([form == "b" for _, form in leaves])
+    parts = [matrices.affine(low[~branched], high[~branched])]
+    if branched.any():
+        whole = matrices.affine(low[branched], high[branched])
+        more = matrices.by_branches(low[branched], high[branched], whole)
+        parts.append(whole if more is None else more[1])
+    centre, slopes, rest = (np.concatenate(x) for x in zip(*((p.centre, p.slopes, p.rest) for p in parts), strict=True))
+    return Pieces(centre, slopes, rest)
 
 
 def led(a: SeveralAttempt, pieces: Pieces) -> float:
