@@ -36,6 +36,7 @@ METRICS = ["auto", "auto", "box", "polytope", "ellipsoid"]
 SLICES = 32  # of a stance, for Runge and Kutta's method
 CANDIDATES, LOOK = 12, 15  # values tried a step; steps over which a functional is led back
 RADIUS = 1e-9  # share of a radius that floating point may be off
+OPEN = "no ball is proved to be kept, none is seen to be left"
 Values = dict[str, Any]
 Step = Callable[[Any, Values], Any]
 
@@ -521,7 +522,7 @@ class Run:
             led = max(float(self.ball.size(step(e, {k: x + np.zeros(2000) for k, x in v.items()})).max()) for v in each)
             if led > self.radius:
                 return "the largest ball of the box asked for is left"
-        return "no ball is proved to be kept, none is seen to be left"
+        return OPEN
 
     def led_away(self) -> Any:
         """How far states come from their targets in the long run if all values conspire: within the bounds."""
