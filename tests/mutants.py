@@ -284,9 +284,21 @@ EQUIVALENT: dict[Key, str] = {
     ("several", "gone_through", "count <= KEPT", "count < KEPT"): "how many leaves are kept to save time changes no leaf",
     ("several", "gone_through", "count <= KEPT", "count < KEPT (2)"): "as above",
     ("several", "gone_through", "count <= KEPT", "count > KEPT (2)"): "leaves that are not kept are evaluated anew",
-    ("flows", "shifted_to", "x >> zeros", "-(-x >> zeros)"): "only zeros are shifted out",
     ("flows", "Flows._enclosed", "len(self._found) == MOST_KEPT", "len(self._found) != MOST_KEPT"):
         "how many enclosures are kept to save time changes none of them",
+    ("flows", "Flows.__init__", "MOST_TERMS // sum(map(len, polynomial.values())) + 1", "MOST_TERMS // sum(map(len, polynomial.values())) - 1"):
+        "how many expansions are kept to save time changes none of them",
+    ("flows", "Flows.__init__", "MOST_TERMS // sum(map(len, polynomial.values()))", "-(-MOST_TERMS // sum(map(len, polynomial.values())))"):
+        "how many expansions are kept to save time changes none of them",
+    ("flows", "Flows._expanded", "len(self._about) >= self.forms", "len(self._about) > self.forms"):
+        "how many expansions are kept to save time changes none of them",
+    ("flows", "Flows._expanded", "len(self._about) >= self.forms", "len(self._about) < self.forms"):
+        "how many expansions are kept to save time changes none of them",
+    ("flows", "Flows._at_time", "len(self._timed) >= self.forms", "len(self._timed) > self.forms"):
+        "how many expansions are kept to save time changes none of them",
+    ("flows", "Flows._at_time", "len(self._timed) >= self.forms", "len(self._timed) < self.forms"):
+        "how many expansions are kept to save time changes none of them",
+    ("expansions", "expanded", "most.bit_length() // 8", "-(-most.bit_length() // 8)"): "digits of a byte more",
     ("flows", "divisions", "lines[0] < g < lines[-1]", "lines[0] <= g < lines[-1]"): "the first cut is among the cuts",
     ("flows", "divisions", "lines[0] < g < lines[-1]", "lines[0] < g <= lines[-1]"): "the last cut is among the cuts",
     ("flows", "divisions", "set(inside) <= set(lines)", "set(inside) < set(lines)"): "the ends are no lines inside",

@@ -54,7 +54,7 @@ PROOFS = (
     "reals",
     "names",
 )
-STANCES = ("calculus", "motion", "pushes", "signals", "models", "rates", "flows")
+STANCES = ("calculus", "motion", "pushes", "signals", "models", "rates", "flows", "expansions")
 NORMS = ("matrices", "inequality")
 SEVERAL = ("jacobians", "several", "outcomes", "periodic", "products", "absorbed", "attracting", "vertices")
 GRAPHS = ("graph", "graph_outcomes", "stance_outcomes", "cycles", "cycle_outcomes")

@@ -825,27 +825,53 @@ GROWN = 3494761522500682375
 
 @unit
 def spread_of_polynomials(checker: Any) -> None:
-    """Middle and magnitudes of all that differs from it, exactly; points and what nearly are; bits that are added."""
-    flows = checker.flows
-    assert [flows.chebyshev(k) for k in range(5)] == [[1], [0, 1], [-1, 0, 2], [0, -3, 0, 4], [1, 0, -8, 0, 8]]
-    assert flows.powers([1, 2, 3, 5, 7]) == [1 - 3 + 7, 2 - 15, 6 - 56, 20, 56] and flows.powers([]) == []
-    assert flows.alike(((2, 1), (0, 1)), 0, False) == (2, ((0, 1), (1, 1), (2, 1)), [[1, -1, 0]])
-    assert flows.alike(((2, 1), (0, 1)), 0, True) == (2, ((0, 1),), [[1, -1, 0]])
-    assert flows.alike(((0, 3), (2, 0), (0, 1)), 1, False) == (3, ((0, 0), (0, 1), (0, 2), (0, 3), (2, 0)), [[-1, 2, -1, 0], [1]])
-    assert flows.alike((), 0, False) == (0, (), []) and flows.alike(((1, 2, 3),), 1, True) == (2, ((1, 0, 3),), [[-1, -1, 0]])
+    """Middle and magnitudes of all that differs from it, of derivatives too, exactly; bits that are added."""
+    e = checker.expansions
+    assert [e.chebyshev(k) for k in range(5)] == [[1], [0, 1], [-1, 0, 2], [0, -3, 0, 4], [1, 0, -8, 0, 8]]
+    assert e.powers([1, 2, 3, 5, 7]) == [1 - 3 + 7, 2 - 15, 6 - 56, 20, 56] and e.powers([]) == []
+    assert e.alike(((2, 1), (0, 1)), 0, 9) == (2, ((0, 1), (1, 1), (2, 1)), [[1, -1, 0]])
+    assert e.alike(((2, 1), (0, 1)), 0, 1) == (2, ((0, 1),), [[1, -1, 0]])
+    assert e.alike(((2, 1), (0, 1)), 0, 2) == (2, ((0, 1), (1, 1)), [[1, -1, 0]])
+    assert e.alike(((0, 3), (2, 0), (0, 1)), 1, 9) == (3, ((0, 0), (0, 1), (0, 2), (0, 3), (2, 0)), [[-1, 2, -1, 0], [1]])
+    assert e.alike((), 0, 9) == (0, (), []) and e.alike(((1, 2, 3),), 1, 1) == (2, ((1, 0, 3),), [[-1, -1, 0]])
+    assert [e.places(x, 8) for x in (0, 1, -6, 192, 256, 512)] == [0, 8, 7, 2, 0, 0]
     cubic = ((2, 1), (0, 1)), [5, 7]  # 5 x x + 7 at x = 3/4 + y, both times 16
-    assert flows.shifted_to(cubic, 0, 192, 8, False) == ((((0, 1), (1, 1), (2, 1)), [5 * 9 + 7 * 16, 5 * 24, 5 * 16]), 4)
-    assert flows.shifted_to(cubic, 0, 192, 8, True) == ((((0, 1),), [5 * 9 + 7 * 16]), 4)
-    assert flows.shifted_to(cubic, 0, 0, 8, True) == ((((0, 1),), [7]), 0)
-    for poly, at, expected in SPREAD:
-        exponents = tuple(poly)
-        found = flows.spread((exponents, list(poly.values())), at, 8)
-        assert found == expected, (poly, at, found)
-    for poly, at, bits, expected in NARROW:
-        found = flows.spread((tuple(poly), list(poly.values())), at, bits)
-        assert found == expected, (poly, at, bits, found)
+    assert e.shifted_to(cubic, 0, 192, 8) == ((((0, 1), (1, 1), (2, 1)), [5 * 9 + 7 * 16, 5 * 24, 5 * 16]), 4)
+    assert e.shifted_to(cubic, 0, 192, 8, 1) == ((((0, 1),), [5 * 9 + 7 * 16]), 4)
+    assert e.shifted_to(cubic, 0, 192, 8, 2) == ((((0, 1), (1, 1)), [5 * 9 + 7 * 16, 5 * 24]), 4)
+    assert e.shifted_to(cubic, 0, 0, 8, 1) == ((((0, 1),), [7]), 0)
+    assert e.joined([-128, 127, 0, -1], 1) == -128 + (127 << 8) - (1 << 24) and e.joined([3, -1], 2) == 3 - (1 << 16)
+    assert e.digits(-128 + (127 << 8) - (1 << 24), 1, 4) == [-128, 127, 0, -1] and e.digits(3 - (1 << 16), 2, 2) == [3, -1]
+    whole = 1 << 128
+    assert e.weights(0, 128, 3, 8) == [whole, whole >> 1, whole >> 2, whole >> 3]
+    assert e.weights(2, 128, 4, 8) == [0, 0, 2 * whole, 6 * whole >> 1, 12 * whole >> 2]
+    assert e.weights(0, 1, 20, 8)[15:] == [256, 1, 1, 1, 1, 1] and e.weights(1, 0, 2, 8) == [0, whole, 0]
+    for poly, at, (middle, reach, extra) in SPREAD:
+        form = e.expanded(tuple(poly), [[c] for c in poly.values()], 0, tuple(x for x, _ in at), 8)
+        found = e.spread(form, (0,) * (len(at) + 1), (0, *(r for _, r in at)), 8)
+        assert found[0] == middle << 48 and reach - 1 < Q(found[1], 1 << 48) <= reach and form.extra == extra, (poly, at, found)
+    # of (5 + 7 t) x + (2 - 3 t - 4 t t) x x about x = -1/2, all times 4, within 1/4 in time and 1/2 of x
+    form = e.expanded(((1,), (2,)), [[5, 7, 0], [2, -3, -4]], 3, (-128,), 8)
+    assert form.columns == {(0,): [-8, -17, -4], (1,): [12, 40, 16], (2,): [8, -12, -16]} and (form.degree, form.extra) == (2, 3 + 2)
+    for orders, wanted in DERIVATIVES.items():
+        assert e.spread(form, orders, (64, 128), 8) == tuple(int(x * (1 << 48)) for x in wanted), (orders, e.spread(form, orders, (64, 128), 8))
+    nothing = e.expanded(((0,),), [[0, 0]], 0, (3,), 8)
+    assert e.spread(nothing, (1, 2), (256, 256), 8) == (0, 0)
+    # a width of digits that is just enough: all coefficients are as large as they may be
+    large = e.expanded(((0,), (1,), (2,)), [[127] * 2, [127] * 2, [127] * 2], 0, (256,), 8)
+    assert large.columns == {(0,): [381] * 2, (1,): [381] * 2, (2,): [127] * 2}
+    large = e.expanded(((0,), (1,)), [[1000] * 2, [-1000] * 2], 0, (256,), 8)
+    assert large.columns == {(0,): [0] * 2, (1,): [-1000] * 2}
+    assert e.spread(e.expanded(((),), [[0] * 17 + [1]], 0, (), 8), (0,), (1,), 8) == (0, 1)  # 2^-136, rounded up
 
 
+DERIVATIVES: dict[tuple[int, int], tuple[Q, Q]] = {  # middle, and magnitudes of the rest
+    (0, 0): (Q(-8), Q(17, 4) + Q(4, 16) + (12 + Q(40, 4) + Q(16, 16)) / 2 + (8 + Q(12, 4) + Q(16, 16)) / 4),
+    (1, 0): (Q(-17), Q(8, 4) + (40 + Q(32, 4)) / 2 + (12 + Q(32, 4)) / 4),
+    (0, 1): (Q(12), Q(40, 4) + Q(16, 16) + 8 + Q(12, 4) + Q(16, 16)),
+    (1, 1): (Q(40), Q(32, 4) + 12 + Q(32, 4)),
+    (0, 2): (Q(16), 2 * (Q(12, 4) + Q(16, 16))),
+}
 SPREAD: list[Any] = [  # with 8 bits
     ({(0,): 5, (1,): 7, (2,): -3}, ((0, 256),), (5, 10, 0)),
     ({(0,): 5, (1,): 7, (2,): -3}, ((0, 128),), (5, 5, 0)),
@@ -861,17 +887,7 @@ SPREAD: list[Any] = [  # with 8 bits
     ({(0, 1): 5, (1, 0): 7, (2, 1): -3}, ((0, 256), (-3, 5)), (-15, 1841, 8)),
     ({(1,): 7}, ((0, 1),), (0, 1, 0)),
     ({(0,): 9}, ((3, 1),), (9, 0, 0)),
-    ({}, ((3, 1),), (0, 0, 0)),
     ({(2,): 1000, (1,): 1}, ((-100, 30),), (623400, 430770, 12)),
-]
-NARROW: list[Any] = [
-    ({(0,): 1152921504606846976, (1,): 1152921504606846976, (2,): -576460752303423488}, ((288230376151711744, 1048576),), 60, (22481969339833516032, 33554432, 4)),
-    ({(0,): 1152921504606846976, (1,): 1152921504606846976, (2,): -576460752303423488}, ((288230376151711744, 1048577),), 60, (22481969339833516032, 12582925, 4)),
-    ({(0,): 1152921504606846976, (1,): 1152921504606846976, (2,): -576460752303423488}, ((3, 1048576),), 60, (1532495540865888862346031014505056797142013532293824512, 2787593149816327892691964784081045188247552, 120)),
-    ({(0,): 1152921504606846976, (1,): 1152921504606846976, (2,): 3}, ((0, 3),), 60, (1152921504606846976, 4, 0)),
-    ({(0,): 1152921504606846976, (1,): 1152921504606846976, (2,): 3}, ((0, 0),), 60, (1152921504606846976, 0, 0)),
-    ({(0, 0): 1152921504606846976, (1, 0): -1152921504606846976, (2, 1): 3377699720527872, (0, 1): 77}, ((3298534883328, 5), (288230376151711744, 7)), 60, (5070587893803112714396596436992, 30786325577728, 42)),
-    ({(0, 0): 1152921504606846976, (1, 0): -1152921504606846976, (2, 1): 3377699720527872, (0, 1): 77}, ((3298534883328, 5), (288230376151711744, 144115188075855872)), 60, (5070587893803112714396596436992, 15268368219111424, 42)),
 ]
 
 

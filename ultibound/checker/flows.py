@@ -10,12 +10,12 @@ from bisect import bisect_left, bisect_right
 from collections.abc import Sequence
 from dataclasses import dataclass
 from fractions import Fraction
-from functools import lru_cache
 from itertools import pairwise, product
-from math import comb, prod
-from operator import add, mul
+from math import perm, prod
+from operator import add, sub
 from typing import Any
 
+from .expansions import MOST_DEGREE, Expansion, expanded, powers, shifted_to, spread
 from .model import Library
 from .models import Exponents, Jet, Poly, derivative, gather
 from .motion import Motion
@@ -26,11 +26,10 @@ from .reals import Inexact, Undefined
 from .terms import Terms
 
 MOST_CELLS, MOST_PIECES, MOST_PARAMETERS, MOST_STATES = 100_000, 64, 6, 12
-DEGREES, BITS = (60, 12), (24, 400)
+DEGREES, BITS = (MOST_DEGREE, 12), (24, 400)
 MOST_NUMBERS = 200_000  # in one text
 LONGEST = 4096  # binary digits of a cut
-POINT = 40  # an argument known to so many bits is a point
-MOST_KEPT = 20_000  # enclosures of entries, for other lines
+MOST_KEPT, MOST_TERMS = 20_000, 100_000  # enclosures of entries, for other lines; terms of expansions, likewise
 COARSE = 40  # bits after the point of the growth of an error
 STEEPEST = 64  # rates times half the duration of a piece
 INTEGER = r"(?:0|-?[1-9][0-9]{0,199})"
@@ -38,7 +37,6 @@ INTEGERS = re.compile(rf"{INTEGER}(?: {INTEGER})*", re.ASCII)
 
 Matrix = list[list[int]]
 Pair = tuple[int, int]  # state and column of the fundamental solution, from 1; column 0: the particular solution
-Stored = tuple[tuple[Exponents, ...], list[int]]  # powers and coefficients
 Place = tuple[int, int, tuple[Pair, ...]]  # cell, piece, and middle and reach of each argument
 
 
@@ -160,7 +158,12 @@ class Flows:
         self.grids = tuple(p.grid for p in system.motion.parameters)
         self._last: dict[bool, tuple[Any, list[Place]]] = {}  # of the arguments last asked for
         self.bits = system.bits + 4  # after the point of middles and reaches
-        self._known: dict[Any, tuple[Stored, int, Fraction]] = {}
+        polynomial = next(iter(cells[0][0].polynomials.values()))
+        self.forms = MOST_TERMS // sum(map(len, polynomial.values())) + 1  # expansions kept
+        self._known: dict[Any, dict[Exponents, list[int]]] = {}
+        self._errors: dict[Any, tuple[int, Fraction]] = {}
+        self._timed: dict[Any, tuple[tuple[Exponents, ...], list[list[int]], int]] = {}
+        self._about: dict[Any, Expansion] = {}
         self._found: dict[Any, Interval] = {}
 
     def reached(self, at: Sequence[Ends], cells: Sequence[range]) -> list[range]:
@@ -199,12 +202,17 @@ class Flows:
             raise Undefined("several pieces of a trajectory are met: no one polynomial is near it")
         cell, rank, parts = places[0]
         end = len(parts) < len(orders)
-        (powers_, column), error, factor = self._polynomial(cell, rank, (i, j), tuple(orders), end)
-        scale = factor / (1 << self.system.models.bits)
+        error, factor = self._error(cell, rank, (i, j), tuple(orders))
+        unit, poly = factor / (1 << self.system.bits), dict[Exponents, Fraction]()
+        for e, column in self._columns(cell, rank, (i, j)).items():
+            left, times = tuple(map(sub, e, orders[1:])), prod(map(perm, e, orders[1:]))
+            if times:
+                column = [perm(n, orders[0]) * c * times for n, c in enumerate(column)][orders[0] :]
+                poly |= {left: sum(column) * unit} if end else {(n, *left): c * unit for n, c in enumerate(column)}
         first, last = self.pieces[rank], self.pieces[rank + 1]
         time = [] if end else [(0, (first + last - 1, last - first))]
         arguments = [*time, *((k, x) for k, x in enumerate(middles(cell, self.cuts), 1))]
-        return arguments, {e: c * scale for e, c in zip(powers_, column, strict=True)}, error * scale
+        return arguments, poly, error * factor / self.system.models.unit
 
     def _places(self, orders: Sequence[int], at: Sequence[Ends], cells: Sequence[range]) -> list[Place]:
         """Parts of cells and pieces that together cover the intervals: proofs/trajectory.md (6)."""
@@ -265,40 +273,63 @@ class Flows:
         key = cell, rank, i, j, orders, end
         if (key, at, a.bits) in self._found:  # lines about the same boxes
             return self._found[key, at, a.bits]
-        if key not in self._known:
-            self._known[key] = self._polynomial(cell, rank, (i, j), orders, end)
-        poly, error, factor = self._known[key]
-        middle, reach, extra = spread(poly, at, self.bits)
-        reach += error << extra
-        below = factor.denominator << self.system.models.bits + extra
+        error, factor = self._error(cell, rank, (i, j), orders)
+        reaches = [0, *(r for _, r in at)] if end else [r for _, r in at]
+        form = self._expanded(cell, rank, (i, j), tuple(x for x, _ in at), end)
+        middle, reach = spread(form, orders, reaches, self.bits)
+        reach += error << form.extra
+        below = factor.denominator << self.system.models.bits + form.extra
         low, high = ((middle + s * reach) * factor.numerator for s in (-1, 1))
         if len(self._found) == MOST_KEPT:
             self._found.clear()
         found = self._found[key, at, a.bits] = a.quotients(low, high, below)
         return found
 
-    def _polynomial(
-        self, cell: int, rank: int, entry: Pair, orders: tuple[int, ...], end: bool
-    ) -> tuple[Stored, int, Fraction]:
-        """Its powers (of time too, unless at the end), the bound of its error, and a factor for both."""
-        known, m = self.cells[cell][rank], self.system.models
+    def _error(self, cell: int, rank: int, entry: Pair, orders: tuple[int, ...]) -> tuple[int, Fraction]:
+        """The bound of a derivative's error, and the factor that both have from normalised arguments to the claim's."""
+        key = cell, rank, entry, orders
+        if key in self._errors:
+            return self._errors[key]
+        known = self.cells[cell][rank]
         by = tuple(k for k, n in enumerate(orders[1:]) for _ in range(n))
-        error = (known.rates if orders[0] else known.errors)[entry][m.rank[by]]
+        error = (known.rates if orders[0] else known.errors)[entry][self.system.models.rank[by]]
         factor = 1 / (self.pieces[rank + 1] - self.pieces[rank]) if orders[0] else Fraction(1)
         for k in by:
             factor /= middles(cell, self.cuts)[k][1]
-        poly: dict[Exponents, int] = {}
-        for e, column in known.polynomials[entry].items():
-            left = tuple(n - o for n, o in zip(e, orders[1:], strict=True))
-            scale = prod(comb(n, o) * (2 if o == 2 else 1) for n, o in zip(e, orders[1:], strict=True)) << GUARD
-            if not scale:
-                continue
-            column = derivative(column) if orders[0] else column
-            if end:
-                poly[left] = scale * sum(column)
-            else:
-                poly |= {(n, *left): scale * c for n, c in enumerate(powers(column))}
-        return (tuple(poly), list(poly.values())), error, factor
+        self._errors[key] = error, factor
+        return error, factor
+
+    def _columns(self, cell: int, rank: int, entry: Pair) -> dict[Exponents, list[int]]:
+        """By powers of time, for each product of powers of the parameters."""
+        key = cell, rank, entry
+        if key not in self._known:
+            self._known[key] = {e: powers(c) for e, c in self.cells[cell][rank].polynomials[entry].items()}
+        return self._known[key]
+
+    def _expanded(self, cell: int, rank: int, entry: Pair, about: tuple[int, ...], end: bool) -> Expansion:
+        """About a middle: its derivatives are those of the same coefficients, and boxes share their middles."""
+        key = cell, rank, entry, about, end
+        if key not in self._about:
+            if len(self._about) >= self.forms:
+                self._about.clear()
+            time, rest = (1 << self.bits, about) if end else (about[0], about[1:])
+            self._about[key] = expanded(*self._at_time(cell, rank, entry, time, end), rest, self.bits)
+        return self._about[key]
+
+    def _at_time(
+        self, cell: int, rank: int, entry: Pair, time: int, end: bool
+    ) -> tuple[tuple[Exponents, ...], list[list[int]], int]:
+        key = cell, rank, entry, time, end
+        if key not in self._timed:
+            if len(self._timed) >= self.forms:
+                self._timed.clear()
+            columns = self._columns(cell, rank, entry)
+            count = len(next(iter(columns.values())))
+            kept = 2 if end else count  # nothing is asked there beyond the first derivative
+            poly = tuple((n, *e) for e in columns for n in range(count)), [x for c in columns.values() for x in c]
+            (_, moved), extra = shifted_to(poly, 0, time, self.bits, kept)
+            self._timed[key] = tuple(columns), [moved[k : k + kept] for k in range(0, len(moved), kept)], extra
+        return self._timed[key]
 
 
 def middles(rank: int, cuts: list[tuple[Fraction, ...]]) -> Cell:
@@ -308,73 +339,6 @@ def middles(rank: int, cuts: list[tuple[Fraction, ...]]) -> Cell:
         rank, k = divmod(rank, len(lines) - 1)
         found.append(((lines[k] + lines[k + 1]) / 2, (lines[k + 1] - lines[k]) / 2))
     return found[::-1]
-
-
-def powers(column: list[int]) -> list[int]:
-    """Coefficients by powers of a sum of Chebyshev polynomials."""
-    total = [0] * len(column)
-    for k, c in enumerate(column):
-        for n, x in enumerate(chebyshev(k)):
-            total[n] += c * x
-    return total
-
-
-@lru_cache(128)
-def chebyshev(k: int) -> list[int]:
-    if k < 2:
-        return [0] * k + [1]
-    found = [0, *(2 * x for x in chebyshev(k - 1))]
-    for n, x in enumerate(chebyshev(k - 2)):
-        found[n] -= x
-    return found
-
-
-@lru_cache(512)
-def alike(powers_: tuple[Exponents, ...], v: int, point: bool) -> tuple[int, tuple[Exponents, ...], list[list[int]]]:
-    """The degree by argument v, the powers that shifting it leaves, and the ranks of terms alike but in its power.
-
-    These are in the order of that power, -1 where there is none; of a point only the power 0 is left."""
-    groups: dict[Exponents, dict[int, int]] = {}
-    for k, e in enumerate(powers_):
-        groups.setdefault((*e[:v], 0, *e[v + 1 :]), {})[e[v]] = k
-    found = [[ranks.get(n, -1) for n in range(max(ranks) + 1)] for ranks in groups.values()]
-    left = [(*e[:v], n, *e[v + 1 :]) for e, x in zip(groups, found, strict=True) for n in range(1 if point else len(x))]
-    return max(map(len, found), default=1) - 1, tuple(left), found
-
-
-def shifted_to(poly: Stored, v: int, x: int, bits: int, point: bool) -> tuple[Stored, int]:
-    """In powers of the distance from x by argument v (of a point: there), and how many more bits it has."""
-    degree, powers_, groups = alike(poly[0], v, point)
-    zeros = min((x & -x).bit_length() - 1, bits) if x else bits  # halved boxes have middles of few digits
-    x, places = x >> zeros, bits - zeros
-    steps = [x**n << places * (degree - n) for n in range(degree + 1)]
-    rows = [[comb(n, m) * steps[n - m] for n in range(m, degree + 1)] for m in range(1 if point else degree + 1)]
-    column = [*poly[1], 0]  # the last: no term
-    moved = []
-    for ranks in groups:
-        here = [column[k] for k in ranks]
-        moved += [sum(map(mul, row, here[m:])) for m, row in enumerate(rows[: len(here)])]
-    return (powers_, moved), places * degree
-
-
-def spread(poly: Stored, at: tuple[Pair, ...], bits: int) -> tuple[int, int, int]:
-    """The value in the middle, the magnitudes of all that may differ from it, and how many more bits these have."""
-    extra = rounded = 0
-    for v in sorted(range(len(at)), key=lambda v: at[v][1]):  # points first, as they leave fewer powers
-        x, r = at[v]
-        point = r << POINT <= 1 << bits
-        if point and r:  # all arguments are within [-1, 1]
-            steep = sum([abs(c) * e[v] for e, c in zip(*poly, strict=True) if e[v]])
-            rounded -= -steep * r >> bits + extra
-        if x or point:
-            poly, more = shifted_to(poly, v, x, bits, point)
-            extra += more
-    middle = sum([c for e, c in zip(*poly, strict=True) if not any(e)])
-    sizes, places = (poly[0], [abs(c) if any(e) else 0 for e, c in zip(*poly, strict=True)]), 0
-    for v, (_, r) in enumerate(at):
-        sizes, more = shifted_to(sizes, v, r, bits, True)
-        places += more
-    return middle, (rounded << extra) - (-sum(sizes[1]) >> places), extra
 
 
 # The rule.

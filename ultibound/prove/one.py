@@ -37,7 +37,7 @@ SHARPER = 1e-2  # factor on the gap when an undecided requirement is pursued
 FINEST = 1e-11
 COARSE = 0.03
 DECIDED = 0.5  # gap at which the sign of what is not near zero is known
-ACCURACY = 4e-12  # of the trial trajectories, relative to the largest of them
+ACCURACY, SHARE = 4e-12, 1e-5  # of trial trajectories, relative to the largest of them: this, or that share of the gap
 PADDING = 1e-3  # what a library axis may take beyond what the search found
 TARGET_GAP = 1e-8  # suprema are taken over a ball larger by as much: proofs/invariant-set.md (4)
 LEAST_SHARE = 1e-3  # of the gap, for a factor of the sector route that nearly cancels
@@ -242,7 +242,16 @@ class Attempt:
         try:
             if self.variant not in self.known:
                 spans = {p.name: self._span(p.gate, p.grid) for p in m.parameters}
-                found = trial(self.obligations.graph, m, self.claim.libraries, spans, ACCURACY, watch=watch)
+                accuracy = max(ACCURACY, SHARE * min(self.gap, COARSE))
+                found = trial(
+                    self.obligations.graph,
+                    m,
+                    self.claim.libraries,
+                    spans,
+                    accuracy,
+                    max(1e-9, 10 * accuracy),
+                    watch=watch,
+                )
                 self.known[self.variant] = found, self.writer.flows_of(found.witness)
             found, flows = self.known[self.variant]
             self.ranges.flows = found.table
