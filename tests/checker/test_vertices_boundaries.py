@@ -13,7 +13,7 @@ import pytest
 
 import ultibound.checker
 from tests.checker.test_boundaries import BASE, GONE, Case, Entries, Question, but, sealed
-from tests.checker.test_several_boundaries import ONE, STEP, Lines, claim, hair, without
+from tests.checker.test_several_boundaries import ONE, PLAIN, STEP, Lines, claim, hair, without
 
 CASES: dict[str, Question] = {}
 
@@ -150,7 +150,22 @@ def others() -> None:
     reject("signals within a stance", d.found("ball", [("settles", "proved")], NORM), "proof line 1", "vertices of a ball are not known to be kept under signals within a stance")
 
 
+def beside() -> None:
+    """Of a region that is kept the ball says nothing; beside gain and residual it counts."""
+    line = {"rule": "invariant-vertices", "proves": "invariant", "uses": [5], "witness": {"bits": 0, "trees": ["c"]}, "concludes": {"bound": "7/8"}}
+    region = but(PLAIN, "proof", [*PLAIN["proof"], line])
+    reject("a ball in a region", region, "proof", "line 19 serves no later line and no result")
+    settled = but(PLAIN, "results requirements 0 value", {"lower": None, "upper": "2/5"})
+    accept("a region settled", settled)
+    reject("a region settled by a ball", but(settled, "proof", region["proof"], "results requirements 0 value upper", hair("2/5", -1)), "results", "upper: more is claimed")
+    both = hexagon(step=("w*(x + y) + (3/4 - w)/8", "-w*x")).found("ball", [("settles", "proved")], NORM)
+    both = but(both, "proof 7 concludes norm", "1/16", "proof 8 concludes residual", "1/16", "proof 10 concludes bound", "1/4", "proof 12 concludes lower", "1/16")
+    both = but(both, "proof", [*both["proof"], {"rule": "invariant-ball", "proves": "invariant", "uses": [5, 9], "witness": {}, "concludes": {}}], "results requirements 0 value", {"lower": None, "upper": "1/4"})
+    accept("a ball kept by either", both)
+
+
 # fmt: on
+beside()
 kept()
 turning()
 others()

@@ -160,8 +160,10 @@ class SeveralResults(Results):
     def within(self) -> Fraction | None:
         """The least bound in the metric's norm."""
         each = [] if (bound := self.in_norm()) is None else [bound]
-        if (led := self.one("invariant-vertices", "invariant")) is not None and self.settled:  # proofs/polytope.md (5)
-            each.append(led.concludes["bound"])
+        for n, led in self.lines("invariant-vertices", "invariant"):  # proofs/polytope.md (5)
+            if self.settled and led.domain == self.domain:
+                self.needed.add(n)
+                each.append(led.concludes["bound"])
         if len(self.bounds) == len(self.states):
             each.append(self.metric.length([self.bounds[s] for s in self.states]))
         return min(each, default=None)
