@@ -306,11 +306,11 @@ EQUIVALENT: dict[Key, str] = {
         "every division is exact: what is divided is a minor times the pivot before (proofs/matrix.md (4))",
     ("matrices", "whole", "unit // x.denominator", "-(-unit // x.denominator)"): "a common multiple of all denominators",
     ("inequality", "Inequality.shown", "x + sign * y", "x - sign * y"): "both signs are taken",
-    ("attracting", "polytope", "comb(len(rows), states) * 2 ** states > MOST", "comb(len(rows), states) * 2 ** states >= MOST"):
+    ("vertices", "vertices", "comb(len(v), states) * 2 ** states > MOST", "comb(len(v), states) * 2 ** states >= MOST"):
         "of two to six states and up to 64 rows there are never exactly so many choices",
-    ("attracting", "inverted", "(pivot[k] * x - row[k] * y) // before", "-(-(pivot[k] * x - row[k] * y) // before)"):
+    ("vertices", "inverted", "(pivot[k] * x - row[k] * y) // before", "-(-(pivot[k] * x - row[k] * y) // before)"):
         "every division is exact, as in matrices.definite (proofs/polytope.md, Numbers)",
-    ("attracting", "inverted", "before > 0", "before >= 0"): "the last pivot is not 0",
+    ("vertices", "inverted", "before > 0", "before >= 0"): "the last pivot is not 0",
     ("polynomials", "Expansion.corner", "side > 0", "side >= 0"): "a side is 1 or -1",
     ("polynomials", "Expansion.corner", "side > 0", "side >= 0 (2)"): "a side is 1 or -1",
     ("polynomials", "Expansion.reading.partial", "len(values) // 2", "-(-len(values) // 2)"): "a cell has an even number of corners",

@@ -12,9 +12,12 @@ from collections import Counter
 from collections.abc import Callable
 from dataclasses import dataclass, field
 from fractions import Fraction
+from functools import cached_property
+from itertools import product
 from typing import Any
 
 import numpy as np
+from scipy.optimize import linprog
 
 from tests.adversary import LENGTH, SWEEPS, System, farthest
 from tests.campaign import NAMES, SMOOTH, library
@@ -33,6 +36,7 @@ METRICS = ["auto", "auto", "box", "polytope", "ellipsoid"]
 SLICES = 32  # of a stance, for Runge and Kutta's method
 CANDIDATES, LOOK = 12, 15  # values tried a step; steps over which a functional is led back
 RADIUS = 1e-9  # share of a radius that floating point may be off
+OPEN = "no ball is proved to be kept, none is seen to be left"
 Values = dict[str, Any]
 Step = Callable[[Any, Values], Any]
 
@@ -61,6 +65,7 @@ class Tally:
     steps: int = 0
     contracting: int = 0
     bounded: int = 0
+    unbounded: Counter[str] = field(default_factory=Counter)  # of those that contract, why
     seconds: float = 0.0
     ratios: dict[str, list[float]] = field(default_factory=dict)
     verdicts: Counter[str] = field(default_factory=Counter)
@@ -76,6 +81,7 @@ class Tally:
             f"claims {self.claims}, of which simulation shows {self.contracting} to contract, of these bounded "
             f"{self.bounded}; simulated steps {self.steps}; {self.seconds / max(self.claims, 1):.2f} s a proof"
         )
+        rows += [f"without a bound {n}: {why}" for why, n in self.unbounded.most_common()]
         rows.append("sets: " + ", ".join(f"{n} {k}" for k, n in self.sets.most_common()))
         rows.append("metrics: " + ", ".join(f"{n} {k}" for k, n in self.metrics.most_common()))
         rows.append("verdicts: " + ", ".join(f"{n} {k}" for k, n in self.verdicts.most_common()))
@@ -291,10 +297,18 @@ class Ball:
         image = np.tensordot(self.rows, e, 1)
         return np.sqrt((image**2).sum(axis=0)) if self.round else np.abs(image).max(axis=0)
 
-    def largest(self, room: Any) -> float:
+    @cached_property
+    def wide(self) -> Any:
+        """How far the unit ball reaches along each state."""
+        count, n = self.rows.shape
+        if count > n:
+            both, ends = np.vstack([self.rows, -self.rows]), np.ones(2 * count)
+            return np.array([-linprog(-u, A_ub=both, b_ub=ends, bounds=(None, None)).fun for u in np.eye(n)])
         inverse = np.linalg.inv(self.rows)
-        wide = np.sqrt((inverse**2).sum(axis=1)) if self.round else np.abs(inverse).sum(axis=1)
-        return float((room / wide).min())
+        return np.sqrt((inverse**2).sum(axis=1)) if self.round else np.abs(inverse).sum(axis=1)
+
+    def largest(self, room: Any) -> float:
+        return float((room / self.wide).min())
 
 
 def upper(x: dict[str, Any] | None) -> float | None:
@@ -329,7 +343,8 @@ class Run:
             k: np.linspace(a, b, 101) for k, (a, b, change, _) in c.drawn.items() if change is not None and k == "h"
         }
         aims = c.aim(held)
-        self.radius = self.ball.largest(np.minimum(aims.min(axis=1) - c.low, c.high - aims.max(axis=1)))
+        self.room = np.minimum(aims.min(axis=1) - c.low, c.high - aims.max(axis=1))
+        self.radius = self.ball.largest(self.room)
         if self.kind in ("ball", "smaller ball"):
             self.radius = float(Fraction(r["radius"]["lower"]))
         self.gain, self.residual = upper(r["gain"]), upper(r["residual"])
@@ -371,7 +386,7 @@ class Run:
                 x = aims + 0.3 * (x - aims)
         else:
             e = self.rng.standard_normal((dims, n))
-            e = np.linalg.solve(self.ball.rows, e) if self.rng.random() < 0.7 else e
+            e = np.linalg.pinv(self.ball.rows)[:, :dims] @ e if self.rng.random() < 0.7 else e
             x = aims + e / self.ball.size(e) * self.radius * np.where(
                 self.rng.random(n) < 0.5, 1 - RADIUS, self.rng.random(n)
             )
@@ -414,7 +429,7 @@ class Run:
         steps = {i: (self.entry(f"steps({s}")) for i, s in enumerate(c.states)}
         first = np.abs(x - c.aim(held))
         worst, stayed = np.zeros(dims), True
-        wide = np.abs(np.linalg.inv(self.ball.rows)).sum(axis=1)
+        wide = self.ball.wide
         k, e = self.gain, self.residual
         for step in range(1, self.length + 1):
             shape = (CANDIDATES, n)
@@ -471,10 +486,43 @@ class Run:
         if stayed and np.all(worst < 0.6 * room):
             tally.contracting += 1
             tally.bounded += None not in self.bounds
+            if None in self.bounds:
+                tally.unbounded[self.unkept()] += 1
         if stayed:
             for bound, found in zip(self.bounds, worst, strict=True):
                 if bound is not None and found > 1e-9:
                     tally.ratios.setdefault(c.kind, []).append(bound / float(found))
+
+    def unkept(self) -> str:
+        """What trajectories tell of the balls about the target, where none is proved to be kept.
+
+        A ball is kept if errors of either sign, about any target that held values may make, are led into it by every
+        value: so errors from 0 whose signs an adversary may turn at each step stay in each ball that is kept.
+        """
+        c, dims = self.c, len(self.c.states)
+        a, b, change, _ = c.drawn["h"]
+        lists = {k: listed or [low, (low + high) / 2, high] for k, (low, high, _, listed) in c.drawn.items()}
+        lists |= {"turn": [-1.0, 0.0, 1.0], "sign": [1.0, -1.0]}
+
+        def step(e: Any, v: Values) -> Any:
+            later = {**v, "h": np.clip(v["h"] + v["turn"] * (change or 0.0), a, b)}
+            return v["sign"] * (c.step(c.aim(v) + e, v) - c.aim(later))
+
+        fresh = {k: (min(x), max(x), None, x) for k, x in lists.items()}
+        far = farthest(System(dims, step, lambda v: np.zeros((dims, 1)), fresh), self.rng)
+        if np.any(far > self.room):
+            return "every ball about the target is left, whatever the norm"
+        if self.results["metric"]["kind"] == "box" and 'kind = "box"' in c.text:
+            e = self.rng.uniform(-1, 1, (dims, 2000))
+            e = (
+                np.where(self.rng.random(e.shape) < 0.6, np.sign(e), e)
+                * (self.radius / np.diag(self.ball.rows))[:, None]
+            )
+            each = [dict(zip(lists, x, strict=True)) for x in product(*lists.values())]
+            led = max(float(self.ball.size(step(e, {k: x + np.zeros(2000) for k, x in v.items()})).max()) for v in each)
+            if led > self.radius:
+                return "the largest ball of the box asked for is left"
+        return OPEN
 
     def led_away(self) -> Any:
         """How far states come from their targets in the long run if all values conspire: within the bounds."""
@@ -483,7 +531,7 @@ class Run:
             return np.zeros(len(c.states))
         found = farthest(System(len(c.states), c.step, c.aim, c.drawn), self.rng)
         self.tally.steps += SWEEPS * LENGTH
-        wide = np.abs(np.linalg.inv(self.ball.rows)).sum(axis=1)
+        wide = self.ball.wide
         left = self.radius * wide * k ** (SWEEPS // 2 * LENGTH) if k is not None and k < 1 else 0.0 * wide
         for bound, far, rest in zip(self.bounds, found, left, strict=True):
             assert bound is None or far <= bound * (1 + 1e-6) + rest + 1e-9, (self.seed, "bound, led away")
@@ -548,7 +596,7 @@ class Run:
         c, aims = self.c, self.c.aim(held)
         if self.kind == "none":
             return
-        wide = np.abs(np.linalg.inv(self.ball.rows)).sum(axis=1)
+        wide = self.ball.wide
         for i, (s, bound) in enumerate(zip(c.states, self.bounds, strict=True)):
             left = self.radius * float(wide[i]) * k**self.length if k is not None and k < 1 else np.inf
             if bound is not None:

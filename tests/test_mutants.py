@@ -16,6 +16,7 @@ from tests.checker import (
     test_absorbed_boundaries,
     test_attracting_boundaries,
     test_boundaries,
+    test_branches_boundaries,
     test_cycle_boundaries,
     test_gains_boundaries,
     test_graph_boundaries,
@@ -30,6 +31,7 @@ from tests.checker import (
     test_several_boundaries,
     test_squares_boundaries,
     test_stance_boundaries,
+    test_vertices_boundaries,
     test_ways_boundaries,
 )
 from tests.mutants import EQUIVALENT, Battery, Copies, Mutant, campaign, mutants, table
@@ -55,7 +57,7 @@ PROOFS = (
 )
 STANCES = ("calculus", "motion", "pushes", "signals", "models", "rates", "flows", "expansions")
 NORMS = ("matrices", "inequality")
-SEVERAL = ("jacobians", "several", "outcomes", "periodic", "products", "absorbed", "attracting")
+SEVERAL = ("jacobians", "several", "outcomes", "periodic", "products", "absorbed", "attracting", "vertices")
 GRAPHS = ("graph", "graph_outcomes", "stance_outcomes", "cycles", "cycle_outcomes", "runs")
 SQUARES = ("squares", "polynomials")
 GAINS = ("gains",)
@@ -91,6 +93,8 @@ def batteries(copies: Copies) -> dict[str, Battery]:
         | test_absorbed_boundaries.CASES
         | test_attracting_boundaries.CASES
         | test_run_boundaries.CASES
+        | {f"vertices: {n}": q for n, q in test_vertices_boundaries.CASES.items()}
+        | {f"branches: {n}": q for n, q in test_branches_boundaries.CASES.items()}
     )
     several = Battery(test_several_boundaries.CASES | orbits | horizon_cases | pushes_cases | squares_cases)
     stance_cases = {f"stance: {n}": q for n, q in test_stance_boundaries.CASES.items()}
@@ -104,7 +108,9 @@ def batteries(copies: Copies) -> dict[str, Battery]:
     several_cases = {f"several: {n}": q for n, q in test_several_boundaries.CASES.items()}
     graph_cases = {f"graph: {n}": q for n, q in test_graph_boundaries.CASES.items()}
     gain_cases = {f"gains: {n}": q for n, q in test_gains_boundaries.CASES.items()}
-    attracting_cases = {f"attracting: {n}": q for n, q in test_attracting_boundaries.CASES.items()}
+    attracting_cases = {
+        f"attracting: {n}": q for n, q in (test_attracting_boundaries.CASES | test_vertices_boundaries.CASES).items()
+    }
     run_cases = {f"runs: {n}": q for n, q in test_run_boundaries.CASES.items()}
     more = run_cases | several_cases | graph_cases | horizon_cases | squares_cases | gain_cases | attracting_cases
     proofs = Battery(test_boundaries.CASES | stance_cases | more)

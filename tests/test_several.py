@@ -155,3 +155,67 @@ class TestUnusualClaims:
         more = '[metric]\nkind = "box"\nweights = { x = 1, y = "sqrt(2)" }'
         with pytest.raises(ClaimError, match=r"metric\.weights\.y"):
             proved(PLAIN.format(**ORDINARY | {"more": more}))
+
+
+TURNING = np.array([[-0.12, -1.37], [0.43, -0.04]])
+SIDES = """
+format = 1
+[state]
+x = [-1, 1]
+y = [-0.6, 0.6]
+[uncertain]
+d = [-0.01, 0.01]
+[next]
+x = "{aside} - 0.12*x - 1.37*y + d"
+y = "0.43*x - 0.04*y"
+[target]
+x = 0
+y = 0
+[[require]]
+that = "settles"
+"""
+
+
+@pytest.mark.parametrize(("aside", "kept"), [("0.26", True), ("0.35", False)])
+def test_ball_of_many_sides(aside: str, kept: bool) -> None:
+    """A ball about the target has to allow for misses of either sign: there is one in the region while Σ |Aⁿ m| is.
+
+    At 0.26 neither boxes in a basis nor ellipsoids are kept, for a turn and a miss to one side.
+    """
+    sums, power, lasting = np.zeros(2), np.eye(2), np.zeros(2)
+    for _ in range(200):
+        sums, lasting, power = (
+            sums + np.abs(power[:, 0]) * (float(aside) + 0.01),
+            lasting + np.abs(power[:, 0]),
+            power @ TURNING,
+        )
+    assert np.all(sums < [1, 0.6]) == kept
+    r = proved(SIDES.format(aside=aside)).results
+    assert verdicts(r) == ["proved" if kept else "undecided"]
+    if not kept:
+        assert r["set"] is None and all(x["bound"] is None for x in r["states"].values())
+        return
+    assert r["set"]["kind"] == "ball" and len(r["metric"]["matrix"]) > 2
+    rows = np.array([[float(Fraction(x)) for x in row] for row in r["metric"]["matrix"]])
+    # sampled: from the ball's rim no step leaves it, and it contracts by no more than the gain
+    turns = np.linspace(0, 2 * np.pi, 400)
+    rim = np.stack([np.cos(turns), np.sin(turns)])
+    rim *= float(Fraction(r["radius"]["lower"])) / np.abs(rows @ rim).max(axis=0)
+    led = np.abs(rows @ (TURNING @ rim))
+    assert np.abs(rim).max() > 0.95 and led.max() <= float(ends(r["gain"])[1]) * np.abs(rows @ rim).max() * (1 + 1e-9)
+    assert np.abs(rows @ (TURNING @ rim + [[float(aside) + 0.01], [0]])).max() < np.abs(rows @ rim).max()
+    # in the end x and y are about where the middle of the map rests
+    exact = np.abs(np.linalg.solve(np.eye(2) - TURNING, [float(aside), 0])) + 0.01 * lasting
+    for s, far in zip("xy", exact, strict=True):
+        least, most = ends(r["states"][s]["bound"])
+        assert 0.98 * far <= least <= far * (1 + 1e-9) and far * (1 - 1e-9) <= most <= 1.002 * far
+
+
+def test_slopes_on_both_sides_of_a_corner() -> None:
+    """The sign of x − y is the same in all four entries: each on its own they make a gain of 2 in the same norm."""
+    text = SIDES.replace("[-0.6, 0.6]", "[-1, 1]").replace("{aside} - 0.12*x - 1.37*y + d", "0.45*abs(x - y) + d")
+    text = text.replace("0.43*x - 0.04*y", "0.1*y - 0.45*abs(x - y)").replace('"settles"', '"gain < 1"')
+    r = proved(text).results
+    sides = [np.array([[s, -s], [-s, 0.1 + s]]) for s in (0.45, -0.45)]
+    rate = max(np.abs(np.linalg.eigvals(a)).max() for a in sides)
+    assert verdicts(r) == ["proved"] and rate <= float(ends(r["gain"])[1]) <= rate + 2e-3

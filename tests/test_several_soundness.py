@@ -7,7 +7,7 @@ from collections.abc import Callable
 
 import pytest
 
-from tests.several_campaign import KINDS, Tally, run
+from tests.several_campaign import KINDS, OPEN, Tally, run
 
 LONG = bool(os.environ.get("ULTIBOUND_LONG"))
 CLAIMS, BLOCK = 140 if LONG else len(KINDS), len(KINDS)
@@ -25,8 +25,9 @@ def test_nothing_simulated_goes_beyond_what_is_proved(first: int, tally: Tally) 
 
 
 def test_most_claims_that_contract_get_bounds(tally: Tally, record_property: Callable[[str, str], None]) -> None:
-    """At least three in four of the claims that simulation shows to contract."""
+    """Of the claims that simulation shows to contract; the others' balls are seen to be left, but for one in twenty."""
     record_property("table", tally.table())
     assert tally.steps >= 25_000 * CLAIMS
     assert tally.contracting > CLAIMS / 2
-    assert tally.bounded >= 0.75 * tally.contracting
+    assert tally.bounded >= 0.8 * tally.contracting
+    assert tally.unbounded[OPEN] <= 0.05 * tally.contracting

@@ -185,7 +185,7 @@ unit, accept, reject = CASES.unit, CASES.accept, CASES.reject
 
 def but(entries: Entries, *changes: Any) -> Entries:
     """A copy with some places changed: path (blank-separated, whole numbers are ranks), new value, path, …"""
-    found = copy.deepcopy(entries)
+    found = copied(entries)
     for path, value in zip(changes[::2], changes[1::2], strict=True):
         at: Any = found
         *before, last = [int(p) if p.lstrip("-").isdigit() else p for p in path.split(" ")]
@@ -194,8 +194,15 @@ def but(entries: Entries, *changes: Any) -> Entries:
         if value is GONE:
             del at[last]
         else:
-            at[last] = copy.deepcopy(value)
+            at[last] = copied(value)
     return found
+
+
+def copied(value: Any) -> Any:
+    """Of tables and lists; a fifth of the time of copy.deepcopy, of thousands of certificates."""
+    if isinstance(value, dict):
+        return {k: copied(v) for k, v in value.items()}
+    return [copied(v) for v in value] if isinstance(value, list) else value
 
 
 class _Gone:

@@ -230,7 +230,7 @@ def metrics_by_hand(m: Any) -> None:
     assert skew.length([Q(1), Q(1)]) == 3 and skew.least([Q(1), Q(1)]) == skew.most([Q(1), Q(1)]) == 2
     assert skew.length([Q(3), Q(1, 2)]) == 4 and skew.most([Q(-2), Q(-1)]) == 3
     three = m.metric("polytope", matrix([1, 0], [0, 1], [2, -2]), matrix([1, 0, 0], [1, 0, -Q(1, 2)]), 2)
-    assert three.support(1) == Q(3, 2)
+    assert three.support(1) == 1 and three.tips == matrix([Q(1, 2), 1], [1, Q(1, 2)], [1, 1])
     assert three.length([Q(1), Q(1)]) == 4 and three.most([Q(1), Q(1)]) == 1 and three.unit(1) == (2, 2)
     round_ = norm(m, "ellipsoid", matrix([3, 0], [4, 2]))  # L = [[2, 0], [-4, 3]] / 6
     assert (round_.support(0), round_.support(1)) == (Q(1, 3), Q(5, 6))
@@ -277,8 +277,48 @@ def largest_magnitudes_at_equality(m: Any) -> None:
     exactly(m, skew, leaf(m, nothing(2, 2), [], diagonal(0, 1)), Q(4, 3))
     exactly(m, skew, leaf(m, nothing(2, 1), [], matrix([1], [1])), Q(3))
     three = m.metric("polytope", matrix([1, 0], [0, 1], [1, 1]), matrix([1, 0, 0], [0, 1, 0]), 2)
-    exactly(m, three, leaf(m, diagonal(Q(1, 2), Q(1, 3))), Q(5, 6))
+    exactly(m, three, leaf(m, diagonal(Q(1, 2), Q(1, 3))), Q(1, 2))
     exactly(m, three, leaf(m, matrix([1], [1])), Q(2))
+
+
+@question
+def vertices_at_equality(m: Any) -> None:
+    """A hexagon: (1, 0), (0, 1) and (1, -1), and a matrix that turns it by a side."""
+    three = m.metric("polytope", matrix([1, 0], [0, 1], [1, 1]), matrix([1, 0, 0], [0, 1, 0]), 2)
+    turn = matrix([1, 1], [-1, 0])
+    assert three.many and three.tips == matrix([0, 1], [1, -1], [1, 0])
+    assert (three.support(0), three.support(1)) == (1, 1) and three.unit(0) == (1, 1)
+    exactly(m, three, leaf(m, turn), Q(1))
+    exactly(m, three, leaf(m, nothing(2, 2), [turn], diagonal(0, Q(1, 3))), Q(4, 3))
+    # |V C q| + sum |V G q| + |V| rest |q|: rows are largest at different vertices
+    c, g, h = matrix([Q(1, 2), 0], [Q(1, 4), 1]), matrix([0, Q(1, 8)], [0, 0]), matrix([Q(1, 16), 0], [0, -Q(1, 4)])
+    exactly(m, three, leaf(m, c, [g, h], matrix([0, Q(1, 32)], [Q(1, 32), 0])), 1 + Q(1, 8) + Q(1, 4) + Q(1, 32))
+    exactly(m, three, leaf(m, matrix([0, 1], [0, 0]), [diagonal(Q(1, 2), 0)]), Q(3, 2))
+    exactly(m, three, leaf(m, matrix([1], [-2]), [matrix([Q(1, 4)], [Q(1, 4)])], matrix([0], [Q(1, 8)])), Q(19, 8))
+    steep = m.metric("polytope", matrix([1, 0], [1, 1], [0, Q(1, 3)]), matrix([1, 0, 0], [-1, 1, 0]), 2)
+    assert steep.tips == matrix([1, -2], [1, 0]) and steep.support(1) == 2
+    # seen from another norm, only a left inverse tells
+    other = m.Metric("polytope", three.rows, three.inverse, own=False)
+    assert not other.many and other.support(0) == 1
+    exactly(m, other, leaf(m, turn), Q(2))
+    # a cube of which two corners are cut off
+    cut = m.metric(
+        "polytope",
+        matrix([1, 0, 0], [0, 1, 0], [0, 0, 1], [1, 1, 1]),
+        matrix([1, 0, 0, 0], [0, 1, 0, 0], [0, 0, 1, 0]),
+        3,
+    )
+    assert cut.tips == matrix([1, -1, -1], [1, -1, 1], [1, 1, -1])
+    exactly(m, cut, leaf(m, matrix([1, 1, 1], [0, 0, 0], [0, 0, 0])), Q(1))
+    exactly(m, cut, leaf(m, matrix([1, 1, -1], [0, 0, 0], [0, 0, 0])), Q(3))
+    few = matrix(*diagonal(1, 1, 1), *[[0, 0, 1]] * 22)
+    left = matrix(*([*row, *[0] * 22] for row in diagonal(1, 1, 1)))
+    assert m.metric("polytope", few, left, 3).support(2) == 1  # 2300 choices of rows, 8 of sides
+    refused(
+        m,
+        "more than 20000 choices",
+        lambda: m.metric("polytope", (*few, few[0]), matrix(*([*row, 0] for row in left)), 3).tips,
+    )
 
 
 @question

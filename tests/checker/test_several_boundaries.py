@@ -729,17 +729,19 @@ def balls() -> None:
     accept("ball of nothing", edge)
     reject("ball below nothing", but(edge, "proof 5 concludes radius", hair("0", -1)), "proof line 6", "radius: below nothing")
     reject("ball of an outer radius below nothing", but(little("ellipsoid", THIRDS, OF_THIRDS, "3", "3"), "proof 5 concludes outer", "-3"), "proof line 6", outside)
-    # three rows: no outer radius is shown, a smaller ball is
+    # three rows: a hexagon that reaches as far as a square
     rows, inverse = [*ONE, ["1", "1"]], [["1", "0", "0"], ["0", "1", "0"]]
     three = little("polytope", rows, inverse, "1", "1")
-    reject("three rows, largest", three, "proof line 6", "outer: points of the targets, and a square matrix")
+    accept("three rows, largest", three)
+    reject("three rows, largest, less", but(three, "proof 5 concludes outer", hair("1", -1), "proof 5 concludes radius", hair("1", -1)), "proof line 6", outside)
+    reject("three rows, largest, by a hair", but(three, "proof 5 concludes radius", hair("1", 1)), "proof line 6", inside_ + "x")
     smaller = but(three, "proof 5", {**three["proof"][5], "rule": "smaller-ball", "uses": [1, 2, 3], "concludes": {"radius": "1"}})
     accept("three rows, smaller", smaller)
     reject("three rows, smaller, by a hair", but(smaller, "proof 5 concludes radius", hair("1", 1)), "proof line 6", inside_ + "x")
     for uses in ([1, 2, 3, 4], [1, 2, 3, 4, 5]):
         reject(f"smaller ball uses {uses}", but(smaller, "proof 5 uses", uses), "proof line 6", "a smaller ball rests on the metric and the targets")
     one = little("box", ONE, ONE, "1", "1")
-    for uses, reason in (([1, 2, 3, 2], "outer: points of the targets, and a square matrix"), ([1, 2, 3], outside), ([1, 2, 3, 4, 3], "outer: points"), ([1, 3, 2, 4], "ball rests on metric")):
+    for uses, reason in (([1, 2, 3, 2], "outer: points of the targets"), ([1, 2, 3], outside), ([1, 2, 3, 4, 3], "outer: points"), ([1, 3, 2, 4], "ball rests on metric")):
         reject(f"largest ball uses {uses}", but(one, "proof 5 uses", uses), "proof line 6", reason)
     # images and targets up to the edges
     for n, s in ((7, "x"), (8, "y"), (2, "x"), (3, "y")):

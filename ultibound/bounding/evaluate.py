@@ -77,7 +77,7 @@ class Runner:
     ) -> Run:
         """Runs every step over boxes [low, high] of shape (boxes, variables).
 
-        `branches` fixes library cells, `hold` the branch (0 or 1) of every corner, a box.
+        `branches` fixes library cells, `hold` the branch (0 or 1) of corners, a box.
         """
         count, wanted = len(low), [self.program.value, *self.program.checks]
         if gradient:
@@ -163,7 +163,7 @@ def _corner(
     key = kind, step.args[0], step.args[1]
     a, b, *slopes = (done[k] for k in step.args)
     first, second = slopes or (a, b)
-    if hold is not None:
+    if hold is not None and key in hold:
         take = hold[key] == 0
         return np.where(take, first[0], second[0]), np.where(take, first[1], second[1])
     if key not in sides:

@@ -79,8 +79,9 @@ class NormWriter(Writer):
         edges = []
         for i, s in enumerate(d.states):
             (low, high), _ = d.region(s)
-            row = norm.inverse[i] if norm is not None else ()
-            wide = sum(x * x for x in row) if norm is not None and norm.kind == "ellipsoid" else sum(map(abs, row)) ** 2
+            if norm is None:
+                raise ValueError("no metric")
+            wide = dot(norm.inverse[i], norm.inverse[i]) if norm.kind == "ellipsoid" else norm.support(i) ** 2
             for n, x in self.proof.lines.items():
                 if (x.part, x.rule, x.proves) == (self.part, "point", f"target[{s}]"):
                     edge = min(high - x.concludes["lower"], x.concludes["upper"] - low)

@@ -1,30 +1,32 @@
-"""Rule attracting: a polytope that is mapped into itself, and that every trajectory comes near (proofs/polytope.md)."""
+"""Polytopes that are mapped into themselves, by their vertices: a ball, or one that every trajectory comes near.
+
+Rules invariant-vertices and attracting (proofs/polytope.md).
+"""
 
 from __future__ import annotations
 
-from collections.abc import Iterator, Sequence
+from collections.abc import Sequence
 from dataclasses import dataclass, replace
 from fractions import Fraction
-from itertools import combinations, product
-from math import comb
 from operator import mul
 from typing import Any
 
 from .derive import Derivation, Domain
+from .flows import Flows
 from .jacobians import Joined
-from .matrices import MOST_ROWS, Leaf, Matrix, Whole, framed, image, whole
+from .matrices import MOST_ROWS, Leaf, Matrix, framed, image, whole
 from .numerals import Rejected
 from .several import gone_through, matrix, moved, movements, numbers
-from .theorems import Line, Quantities, parted
+from .theorems import Line, Quantities, parted, require
+from .vertices import vertices
 
-MOST = 20_000  # choices of rows and sides
 BOUNDS = ("bound[slope]", "componentwise")  # that two trajectories under the same values come closer: polytope.md (3)
 RESTS = "attracting rests on the invariant set, then a bound, then how targets move"
 
 
 @dataclass(frozen=True)
 class Polytope:
-    """{e : low_i <= (V e)_i <= high_i}, its vertices as whole numbers with a common denominator last."""
+    """{e : low_i <= (V e)_i <= high_i}; vertices, its own or another's, as whole numbers, a common denominator last."""
 
     rows: Matrix
     low: Sequence[Fraction]
@@ -59,12 +61,7 @@ def attracting(d: Derivation, proves: str, used: list[Line], witness: dict[str, 
     for each in (domain, whole_set):
         if not all(contains(d, each, [Fraction(x, q[-1]) for x in q[:-1]]) for q in p.vertices):
             raise Rejected("a vertex is not shown to lie in the set")
-    far, table = moved(d, used[2:]), Joined(d, "joined", domain, witness["bits"], flows)
-    ends, count = Ends(p, far), 0
-    for leaf in gone_through(d, table, "joined", flows, witness):
-        count += 1
-        if not ends.hold(leaf):
-            raise Rejected("a leaf is not shown to lead into the polytope")
+    count = led(d, p, domain, moved(d, used[2:]), witness, flows)
     if set(claimed) != set(d.states):
         raise Rejected("concludes: a bound for each state")
     for i, s in enumerate(d.states):
@@ -73,50 +70,50 @@ def attracting(d: Derivation, proves: str, used: list[Line], witness: dict[str, 
     return replace(Line("attracting", proves, (), claimed, domain, True), leaves=count)
 
 
+def kept(d: Derivation, proves: str, used: list[Line], witness: dict[str, Any], claimed: Quantities) -> Line:
+    """proofs/polytope.md (5): every [J | m] over the ball leads from its vertices into one that is no larger."""
+    if d.statement.horizon != 1:
+        raise Rejected("vertices of a ball are known to be kept over single steps only")
+    if any(q.within for q in d.statement.uncertain.values()):
+        raise Rejected("vertices of a ball are not known to be kept under signals within a stance")
+    used, flows = parted(used)
+    wanted = [("range", f"target-slope[{s},{h}]") for s, h in movements(d)]
+    if proves != "invariant" or [x.proves for x in used[:1]] != ["ball"]:
+        raise Rejected("invariant rests on the ball, then how targets move")
+    require(proves, "invariant", used[1:], wanted)
+    domain = used[0].domain
+    if domain is None or domain.metric is None or domain.metric.kind == "ellipsoid":
+        raise Rejected("the ball has no vertices")
+    if not 0 <= claimed["bound"] <= domain.radius:
+        raise Rejected("bound: more than the radius")
+    rows, most = domain.metric.rows, len(domain.metric.rows)
+    ball = polytope(rows, [-domain.radius] * most, [domain.radius] * most, len(d.states))
+    inner = replace(ball, low=[-claimed["bound"]] * most, high=[claimed["bound"]] * most)
+    leaves = led(d, inner, domain, moved(d, used[1:]), witness, flows)
+    return replace(Line("invariant-vertices", proves, (), claimed, domain, True), leaves=leaves)
+
+
+def led(
+    d: Derivation, p: Polytope, domain: Domain, far: Sequence[Fraction], witness: dict[str, Any], flows: Flows | None
+) -> int:
+    """How many leaves there are, every one leading from all the vertices to within the ends."""
+    table, ends, count = Joined(d, "joined", domain, witness["bits"], flows), Ends(p, far), 0
+    for leaf in gone_through(d, table, "joined", flows, witness):
+        count += 1
+        if not ends.hold(leaf):
+            raise Rejected("a leaf is not shown to lead into the polytope")
+    return count
+
+
 def polytope(rows: Matrix, low: Sequence[Fraction], high: Sequence[Fraction], states: int) -> Polytope:
     """A polytope that is bounded and not empty: proofs/polytope.md (1). Raises Rejected."""
     if not states <= len(rows) <= MOST_ROWS or any(len(row) != states for row in rows):
         raise Rejected("rows: at least as many as states, with one number for each state")
-    if comb(len(rows), states) * 2**states > MOST:
-        raise Rejected(f"rows: more than {MOST} choices of as many as there are states, and sides")
-    found = list(vertices(rows, low, high, states))
+    (v, unit), ((least, most), below) = whole(rows), whole([low, high])
+    found = [[*(x * unit for x in q), determinant * below] for *q, determinant in vertices(v, least, most, states)]
     if not found:
         raise Rejected("the polytope is empty, or unbounded")
     return Polytope(rows, low, high, found)
-
-
-def vertices(rows: Matrix, low: Sequence[Fraction], high: Sequence[Fraction], states: int) -> Iterator[list[int]]:
-    """All vertices: where independent rows, as many as states, are each at one end, and the others within."""
-    (v, unit), (ends, below) = whole(rows), whole([low, high])
-    for some in combinations(range(len(v)), states):
-        determinant, adjugate = inverted([v[i] for i in some])
-        if determinant == 0:
-            continue
-        for sides in product((0, 1), repeat=states):
-            at = [ends[side][i] for i, side in zip(some, sides, strict=True)]
-            q = [sum(map(mul, row, at)) for row in adjugate]  # V q = determinant * ends
-            images = [sum(map(mul, row, q)) for row in v]
-            if all(a * determinant <= y <= b * determinant for y, a, b in zip(images, *ends, strict=True)):
-                yield [*(x * unit for x in q), determinant * below]
-
-
-def inverted(m: Whole) -> tuple[int, Whole]:
-    """D > 0 and D times the inverse, by elimination without fractions (every division is exact); D = 0 if singular."""
-    n, before = len(m), 1
-    rows = [[*row, *(int(i == j) for j in range(n))] for i, row in enumerate(m)]
-    for k in range(n):
-        at = next((i for i in range(k, n) if rows[i][k]), None)
-        if at is None:
-            return 0, []
-        rows[k], rows[at] = rows[at], rows[k]
-        pivot = rows[k]
-        rows = [
-            pivot if i == k else [(pivot[k] * x - row[k] * y) // before for x, y in zip(row, pivot, strict=True)]
-            for i, row in enumerate(rows)
-        ]
-        before = pivot[k]
-    sign = 1 if before > 0 else -1
-    return sign * before, [[sign * x for x in row[n:]] for row in rows]
 
 
 def contains(d: Derivation, domain: Domain, e: Sequence[Fraction]) -> bool:

@@ -89,11 +89,7 @@ def shallow(found: Any) -> None:
 
 def canonical(entries: dict[str, Any]) -> bytes:
     """Sorted keys, no white space but a newline after each top-level entry and each line of the proof."""
-
-    def compact(value: Any) -> str:
-        return json.dumps(value, ensure_ascii=False, sort_keys=True, separators=(",", ":"))
-
-    parts = []
+    compact, parts = json.JSONEncoder(ensure_ascii=False, sort_keys=True, separators=(",", ":")).encode, []
     for key in sorted(entries):
         value = entries[key]
         if key == "proof" and isinstance(value, list):

@@ -187,7 +187,7 @@ def across(before: Metric, after: Metric, proves: str) -> Metric:
         raise Rejected("metric: Euclidean lengths and largest magnitudes are not compared with each other")
     n = len(after.inverse)
     one = tuple(tuple(Fraction(int(i == j)) for j in range(n)) for i in range(n))
-    return Metric(after.kind, after.rows, before.inverse if sloped(proves) else one)
+    return Metric(after.kind, after.rows, before.inverse if sloped(proves) else one, own=False)
 
 
 def based(basis: Any, n: int) -> tuple[Matrix, Matrix]:

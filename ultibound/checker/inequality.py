@@ -13,8 +13,9 @@ from functools import cached_property
 from math import floor
 from operator import mul
 
-from .matrices import MOST_SLOPES, Leaf, Metric, Whole, added, dot, effect, magnitudes, whole
+from .matrices import MOST_SLOPES, Leaf, Metric, added, dot, effect, magnitudes, whole
 from .numerals import Rejected
+from .vertices import Whole
 
 UNIT = 80
 

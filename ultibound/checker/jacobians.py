@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from collections.abc import Iterator, Mapping
+from collections.abc import Iterator, Mapping, Sequence
 from dataclasses import replace
 from fractions import Fraction
 from itertools import pairwise, product
@@ -18,11 +18,13 @@ from .matrices import Leaf, Matrix
 from .numerals import Rejected
 from .ranges import Box, Ends, Evaluator, Interval
 from .reals import Undefined
+from .terms import Terms
 
 BY_SLOPE, BY_SPLIT = ("slopes", "misses"), ("split-slopes", "split-residuals")
 OF_ROUTE = {"slope": BY_SLOPE, "split": BY_SPLIT}  # what gain and residual are of
 OF_COMPARISON = {"componentwise": BY_SLOPE, "split-componentwise": BY_SPLIT}  # and what is compared entry by entry
 ENTRY = {"slopes": "slope", "misses": "target-miss", "split-slopes": "split-slope", "split-residuals": "split-residual"}
+MOST_CHOICES = 8  # of branches at a leaf
 Part = tuple[Fraction, dict[int, Fraction], Fraction]
 
 
@@ -40,7 +42,9 @@ class Table:
         constant = d.signals(set(met))  # of several states that answer a signal, one constant serves them all
         self.variables = [replace(v, inside=constant[v.name][1]) if v.name in constant else v for v in self.variables]
         self.roots = [[m.root for m in row] for row in meanings]
+        self.same, self.corners = bare(d.terms, [k for row in self.roots for k in row])
         self.below = {k: frozenset(d.terms.below(k)) for row in self.roots for k in row}
+        self.turning = {m.by: turning(d.terms, self.corners, m.by) for row in meanings for m in row}
         self.columns = [  # entries of a column have the same marked name, and share most of their terms
             Evaluator(d.terms, first, column[0].by, met, d.statement.libraries, self.a, flows, others)
             for column in zip(*meanings, strict=True)
@@ -55,9 +59,31 @@ class Table:
         if not isinstance(trees, list) or not all(isinstance(t, str) for t in trees):
             raise Rejected("trees: a list of texts")
         for box, form in boxes(list(product(*(v.cells for v in self.variables))), trees):
-            if form not in ("c", "d"):
+            if form not in ("b", "c", "d"):
                 raise Undefined(f"unknown form {form!r}")
-            yield self.leaf(box, form)
+            yield from self.branches(box) if form == "b" else [self.leaf(box, form)]
+
+    def branches(self, box: Box) -> list[Leaf]:
+        """The matrix over a box, for each choice of the branches that corners meet there: proofs/matrix.md (8)."""
+        sides, found = dict[int, set[int]](), list[Leaf]()
+        for e in self.columns:
+            e.all_of(box, False)
+            for k in self.turning[e.by] & set(e.sides):
+                sides.setdefault(self.same[k], set()).update(e.sides[k])
+        if prod(map(len, sides.values())) > MOST_CHOICES:
+            return [self.leaf(box, "c")]
+        try:
+            for choice in product(*map(sorted, sides.values())):
+                chosen = dict(zip(sides, choice, strict=True))
+                for e in self.columns:
+                    e.chosen = {k: chosen[self.same[k]] for k in self.turning[e.by] if self.same[k] in chosen}
+                found.append(self.leaf(box, "b"))
+        except Undefined:  # a branch is not defined where it is not taken
+            found = []
+        finally:
+            for e in self.columns:
+                e.chosen = {}
+        return found or [self.leaf(box, "c")]
 
     def leaf(self, box: Box, form: str) -> Leaf:
         """proofs/matrix.md (2): the affine part of each entry about the middle, and what is left."""
@@ -78,7 +104,7 @@ class Table:
         """Middle, slopes times half widths, and the rest of each entry of a column over a box."""
         halves = [(y - x) / 2 for x, y in box]
         wide = lcm(*(h.denominator for h in halves))
-        jets, unit = e.all_of(box, form == "c"), 2 * wide * e.one[0]  # how many of what is counted below make 1
+        jets, unit = e.all_of(box, form != "d"), 2 * wide * e.one[0]  # how many of what is counted below make 1
 
         def part(middle: Any, told: dict[int, Any], rest: Any) -> Part:
             return Fraction(middle, unit), {v: Fraction(x, unit) for v, x in told.items()}, Fraction(rest, unit)
@@ -87,8 +113,9 @@ class Table:
             return (ends[0] + ends[1]) * wide, (ends[1] - ends[0]) * wide
 
         found = [(x, dict[int, Any](), y) for x, y in (counted(e.wanted(jets[k])) for k in roots)]
-        # a derivative that may jump has no other form
-        smooth = [i for i, k in enumerate(roots) if form == "c" and not (e.by and e.jumps(self.below[k]))]
+        # a derivative that may jump has no other form; where only values have corners it does not
+        still = frozenset(self.corners) - self.turning[e.by] if form == "b" else frozenset[int]()
+        smooth = [i for i, k in enumerate(roots) if form != "d" and not (e.by and e.jumps(self.below[k] - still))]
         slopes = {i: {v: x for v, x in e.slopes(jets[roots[i]]).items() if x is not None and halves[v]} for i in smooth}
         each = {v: [x[v] for x in slopes.values() if v in x] for x in slopes.values() for v in x}
         # where slopes vary more than they are large, a variable is better left as wide as it is
@@ -123,6 +150,23 @@ class Table:
         box = [valued(v, at[v.name]) for v in self.variables]
         inside(self.d, self.domain, dict(zip((v.name for v in self.variables), box, strict=True)))
         return box
+
+
+def bare(terms: Terms, roots: Sequence[int]) -> tuple[dict[int, int], list[int]]:
+    """What each term is, marks left out: the same number for the same; the terms that are corners."""
+    known, numbers, corners = dict[int, int](), dict[tuple[object, ...], int](), list[int]()
+    for k in sorted({k for root in roots for k in terms.below(root)}):
+        op, args, payload = terms.all[k]
+        one = op, payload, *(known[x] for x in args)
+        known[k] = known[args[0]] if op == "mark" else numbers.setdefault(one, len(numbers))
+        if op in ("abs", "min", "max"):
+            corners.append(k)
+    return known, corners
+
+
+def turning(terms: Terms, corners: Sequence[int], by: str) -> frozenset[int]:
+    """The corners at which the derivative by a marked name may jump: what they are of is marked."""
+    return frozenset(k for k in corners if by and any(terms.all[x][::2] == ("mark", by) for x in terms.below(k)))
 
 
 class Joined(Table):

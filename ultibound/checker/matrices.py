@@ -14,9 +14,9 @@ from math import isqrt, lcm
 from operator import mul
 
 from .numerals import Rejected
+from .vertices import Whole, vertices
 
 Matrix = tuple[tuple[Fraction, ...], ...]
-Whole = list[list[int]]
 
 KINDS = ("box", "polytope", "ellipsoid")
 MOST_STATES = 6
@@ -38,10 +38,26 @@ class Metric:
     kind: str
     rows: Matrix  # V, m x n
     inverse: Matrix  # L, n x m
+    own: bool = True  # whether matrices are seen from the ball of this norm, not from that of another
 
     @cached_property
     def frame(self) -> Frame:
-        return framed(self.rows, self.inverse)
+        return framed(self.rows, tuple(zip(*self.tips, strict=True)) if self.many else self.inverse)
+
+    @property
+    def many(self) -> bool:
+        """Whether the ball has more sides than a box in a basis, and is known by its vertices."""
+        return self.own and len(self.rows) > len(self.inverse)
+
+    @cached_property
+    def tips(self) -> Matrix:
+        """Vertices of ‖e‖ <= 1, one of each opposite two: proofs/matrix.md (7). Raises Rejected."""
+        (v, unit), n = whole(self.rows), len(self.inverse)
+        found = set[tuple[Fraction, ...]]()
+        for *q, below in vertices(v, [-1] * len(v), [1] * len(v), n):
+            tip = tuple(Fraction(x * unit, below) for x in q)
+            found.add(max(tip, tuple(-x for x in tip)))
+        return tuple(sorted(found))
 
     def least(self, e: Sequence[Fraction]) -> Fraction:
         """Lower bound of ‖e‖ at a point: exact, or a root rounded down."""
@@ -56,9 +72,11 @@ class Metric:
         return self._ends([row[s] for row in self.rows])
 
     def support(self, s: int) -> Fraction:
-        """Upper bound of |e_s| over ‖e‖ <= 1: proofs/matrix.md (1b). The least one if V is square."""
+        """Upper bound of |e_s| over ‖e‖ <= 1, the least one but for roots: proofs/matrix.md (1b), (7)."""
         if self.kind == "ellipsoid":
             return root(dot(self.inverse[s], self.inverse[s]))[1]
+        if self.many:
+            return max(abs(q[s]) for q in self.tips)
         return sum(map(abs, self.inverse[s]), Fraction(0))
 
     def length(self, most: Sequence[Fraction]) -> Fraction:
@@ -165,6 +183,16 @@ class Image:
             moving = [g[i] for g in self.slopes if any(g[i])]
             yield max(sum(map(abs, x)) for x in corners(row, moving)) + sum(self.rest[i])
 
+    def each(self) -> Iterator[int]:
+        """Upper bounds of the magnitudes of all entries, in units: proofs/matrix.md (7)."""
+        for i, (row, rest) in enumerate(zip(self.centre, self.rest, strict=True)):
+            for j, (x, y) in enumerate(zip(row, rest, strict=True)):
+                yield abs(x) + y + sum(abs(g[i][j]) for g in self.slopes)
+
+    def most(self, metric: Metric) -> int:
+        """Upper bound of what the norm of largest magnitudes of every matrix is, in units."""
+        return max(self.each() if metric.many else self.rows())
+
     def grams(self) -> Iterator[Whole]:
         """B^T B in units squared, for B the affine part at every corner: proofs/matrix.md (2)."""
         for b in corners(flat(self.centre), [flat(g) for g in self.slopes]):
@@ -178,11 +206,11 @@ class Image:
 def norm_at_most(metric: Metric, leaf: Leaf, bound: Fraction) -> bool:
     """Whether ‖V A L‖ <= bound is shown for every matrix of a leaf, ‖V a‖ <= bound for every vector of one.
 
-    proofs/matrix.md (2), (4); the induced norm of A by (1e). Raises Rejected.
+    proofs/matrix.md (2), (4); the induced norm of A by (1e), or by the ball's vertices (7). Raises Rejected.
     """
     found = seen(metric, leaf)
     if metric.kind != "ellipsoid":
-        return max(found.rows()) <= bound * found.unit
+        return found.most(metric) <= bound * found.unit
     room = bound - found.spread()
     return all(within(g, found.unit, room) for g in found.grams())
 
@@ -196,7 +224,7 @@ def norm_over(
     """
     found = seen(metric, leaf)
     if metric.kind != "ellipsoid":
-        return max(start, Fraction(max(found.rows()), found.unit))
+        return max(start, Fraction(found.most(metric), found.unit))
     spread = found.spread()
     reached = max(start - spread, Fraction(0))
     for g in found.grams():
@@ -268,7 +296,7 @@ def definite(m: Sequence[Sequence[int]]) -> int:
 
 
 def seen(metric: Metric, leaf: Leaf) -> Image:
-    """A leaf in the coordinates of a norm: V A L for matrices, V a for vectors."""
+    """A leaf in the coordinates of a norm: V A L for matrices (V A Q by vertices), V a for vectors."""
     columns = len(leaf.centre[0]) if leaf.centre else 0
     if columns not in (1, len(metric.inverse)):
         raise Rejected("matrix: a vector or a square matrix is bounded")

@@ -26,7 +26,7 @@ class SeveralResults(Results):
         if len(balls) != 1 or balls[0].domain is None or balls[0].domain.metric is None:
             raise Rejected("the proof has not exactly one ball about the target")
         (ball,) = balls
-        rules = ("invariant-region", "invariant-ball", "invariant-rows")
+        rules = ("invariant-region", "invariant-ball", "invariant-rows", "invariant-vertices")
         invariant = next((x for rule in rules if (x := self.one(rule, "invariant")) is not None), None)
         self.domain = invariant.domain if invariant is not None else ball.domain
         self.metric: Metric = balls[0].domain.metric
@@ -162,6 +162,10 @@ class SeveralResults(Results):
     def within(self) -> Fraction | None:
         """The least bound in the metric's norm."""
         each = [] if (bound := self.in_norm()) is None else [bound]
+        for n, led in self.lines("invariant-vertices", "invariant"):  # proofs/polytope.md (5)
+            if self.settled and led.domain == self.domain:
+                self.needed.add(n)
+                each.append(led.concludes["bound"])
         if len(self.bounds) == len(self.states):
             each.append(self.metric.length([self.bounds[s] for s in self.states]))
         return min(each, default=None)

@@ -11,10 +11,11 @@ from typing import Any
 
 from .derive import Derivation, Domain
 from .jacobians import Table, middle_and_half, sloped
-from .matrices import Whole, added, flat, magnitudes, times
+from .matrices import added, flat, magnitudes, times
 from .numerals import Rejected
 from .ranges import Box, Ends
 from .theorems import Line, Quantities, parted
+from .vertices import Whole
 
 MOST_POINTS, MOST_POWER = 16, 4096
 BITS = 512  # kept of the largest entry of a product

@@ -8,7 +8,7 @@ from fractions import Fraction
 from itertools import product
 from typing import Any
 
-from .attracting import attracting
+from .attracting import attracting, kept
 from .calculus import Unprovable
 from .courses import arithmetic, orbit, path, place
 from .cycles import around
@@ -54,6 +54,7 @@ SHAPES: dict[str, tuple[tuple[str, ...], tuple[str, ...] | None]] = {
     "stretch": (("at", "bits", "direction"), ("lower",)),
     "componentwise": (("about", "b", "p"), None),  # one a state
     "invariant-rows": ((), ()),
+    "invariant-vertices": (("bits", "trees"), ("bound",)),
     "absorbed": ((), None),  # one a state
     "attracting": (("bits", "high", "low", "rows", "trees"), None),  # one a state
     "periodic": (("bits", "held", "start", "steps"), None),  # one a state
@@ -177,6 +178,9 @@ class Proof:
                 self.leaves += line.leaves
             elif self.graph is None and (run := running(d, rule, proves, used, witness, claimed)) is not None:
                 line = replace(run, uses=tuple(uses))
+            elif self.graph is None and rule == "invariant-vertices":
+                line = replace(kept(d, proves, used, witness, claimed), uses=tuple(uses))
+                self.leaves += line.leaves
             elif self.graph is None and (about := concluded(d, rule, proves, used, witness, claimed)) is not None:
                 line = replace(about, uses=tuple(uses))
                 self.leaves += about.leaves

@@ -13,24 +13,12 @@ from .flows import Flows
 from .grammar import constant
 from .inequality import Inequality
 from .jacobians import OF_COMPARISON, OF_ROUTE, Table, middle_and_half, sloped
-from .matrices import (
-    ENTRY_BITS,
-    Leaf,
-    Matrix,
-    Metric,
-    Whole,
-    comparison,
-    dot,
-    entries,
-    framed,
-    metric,
-    norm_at_most,
-    vanishes,
-)
+from .matrices import ENTRY_BITS, Leaf, Matrix, Metric, comparison, dot, entries, framed, metric, norm_at_most, vanishes
 from .numerals import Rejected, quantity
 from .periodic import periodic
 from .products import product
 from .theorems import Line, Quantities, fewer, magnitude, parted, require
+from .vertices import Whole
 
 OWN = ("metric", "matrix", "entries", "stretch", "componentwise", "invariant-rows", "periodic", "product", "absorbed")
 KEPT = 5000  # leaves in memory
@@ -84,8 +72,8 @@ def ball(d: Derivation, rule: str, proves: str, used: list[Line], claimed: Quant
     edges = []
     for line in points:
         place = [i for i, s in enumerate(d.states) if (line.rule, line.proves) == ("point", f"target[{s}]")]
-        if not place or len(norm.rows) != n:
-            raise Rejected("outer: points of the targets, and a square matrix")
+        if not place:
+            raise Rejected("outer: points of the targets")
         (low, high), _ = d.region(d.states[place[0]])
         edges.append((min(high - line.concludes["lower"], line.concludes["upper"] - low), place[0]))
     if not any(reaches(norm, claimed["outer"], i, edge) for edge, i in edges):
@@ -95,10 +83,9 @@ def ball(d: Derivation, rule: str, proves: str, used: list[Line], claimed: Quant
 
 def reaches(norm: Metric, outer: Fraction, state: int, edge: Fraction) -> bool:
     """Whether the ball of that radius surely reaches as far along a state: exact, also where a root is meant."""
-    row = norm.inverse[state]
     if norm.kind == "ellipsoid":
-        return outer >= 0 and outer * outer * sum(x * x for x in row) >= edge * edge
-    return outer * sum(map(abs, row)) >= edge
+        return outer >= 0 and outer * outer * sum(x * x for x in norm.inverse[state]) >= edge * edge
+    return outer * norm.support(state) >= edge
 
 
 def invariant_region(d: Derivation, proves: str, used: list[Line]) -> Domain:

@@ -151,13 +151,13 @@ def _rounded(kind: str, v: Floats, unit: Samples, s: Samples) -> tuple[tuple[flo
 
 def _proposal(kind: str, rows: Exact, s: Samples) -> tuple[tuple[float, ...], Proposal]:
     """The exact metric as the samples judge it, and its place among others."""
-    exact = _inverse(rows)
+    exact = inverted(rows)
     v, w = (np.array([[float(x) for x in row] for row in m]) for m in (rows, exact))
     j = judged(kind, v, s, w)
     return j.order, Proposal(kind, rows, exact, j.gain, j.residual, float(1 / j.shares.max()))
 
 
-def _inverse(rows: Exact) -> Exact:
+def inverted(rows: Exact) -> Exact:
     """Exact inverse by elimination; raises ZeroDivisionError for a singular one."""
     n = len(rows)
     m = [[*row, *(Fraction(i == j) for j in range(n))] for i, row in enumerate(rows)]

@@ -72,10 +72,11 @@ def _rest(x: Leaf) -> object:
     return x.rest
 
 
-def directions(middle: Floats, sizes: Floats, noise: Floats, most: int) -> Floats:
+def directions(middle: Floats, sizes: Floats, noise: Floats, most: int, angles: int = ANGLES) -> Floats:
     """Rows of V, |row| · sizes = 1: the states, what leads to them, directions spread where e⁺ = A e + noise goes.
 
-    `most`: choices of as many of them as there are states, and sides, as vertices are found among.
+    `most`: choices of as many of them as there are states, and sides, as vertices are found among; `angles`: of two
+    states.
     """
     n = len(middle)
     spread, power = np.zeros((n, n)), np.diag(noise)
@@ -85,8 +86,8 @@ def directions(middle: Floats, sizes: Floats, noise: Floats, most: int) -> Float
             break
     root = np.linalg.inv(np.linalg.cholesky(spread + 1e-6 * np.diag(np.diag(spread))))
     if n == 2:
-        angles = np.pi * np.arange(ANGLES) / ANGLES
-        tried = [np.eye(n), np.stack([np.cos(angles), np.sin(angles)], axis=1) @ root]
+        turns = np.pi * np.arange(angles) / angles
+        tried = [np.eye(n), np.stack([np.cos(turns), np.sin(turns)], axis=1) @ root]
     else:
         tried = [np.linalg.matrix_power(middle, j) for j in range(POWERS)]
         tried.append(np.array([s for s in product((-1, 0, 1), repeat=n) if s > (0,) * n]) @ root)

@@ -26,7 +26,7 @@ from ..checker.rules import Line, Rejected
 from ..checker.several import moved
 from ..claim.obligations import Domain
 from ..contraction.chains import Chain, chain
-from ..contraction.norms import floats
+from ..contraction.norms import Norm, floats
 from ..contraction.polytope import Pieces, directions, drawn_in
 
 if TYPE_CHECKING:
@@ -140,7 +140,7 @@ def draws_in(
     if whole is None or len(wide) > MOST_STATES or any(q.within for q in a.claim.uncertain.values()):
         return
     rules = [n for n, x in lines.items() if x.part == w.part and x.proves in BOUNDS and x.domain in (whole, whole.of)]
-    search = a.searched(JOINED, domain, box(wide), max(a.gap / 4, look.gap), look.leaves)
+    search = a.searched(JOINED, domain, box(wide), max(a.gap / 4, look.gap), look.leaves, form=evenly(a, domain, wide))
     bits, began = 0 if w.exact("slopes", on) and w.exact("misses", on) else BITS, time.monotonic()
     try:
         pieces = Pieces.of(joined_leaves(w, search.trees, bits, on))
@@ -159,6 +159,14 @@ def draws_in(
             low, high = ([Fraction(f"{x:.9g}") for x in end] for end in ends)
             attracting(w, on, rules[0], moves, (search.trees, bits), exact, low, high)
     a.ranges.spent += time.monotonic() - began
+
+
+def evenly(a: SeveralAttempt, domain: Domain, wide: Sequence[Fraction]) -> Norm | None:
+    """A norm in which what leads to each state is about 1, so that none is seen less closely than another."""
+    taken = a.sampled(a.matrices(JOINED, domain, box(wide)), np.random.default_rng(0))
+    from_box = np.array([*(to_float(x) for x in wide), 1.0])
+    sizes = (np.abs(taken) @ from_box).max(axis=0, initial=0.0)
+    return Norm(np.diag(1 / sizes), np.diag(from_box), False) if sizes.min() > 0 else None
 
 
 def compare(

@@ -32,6 +32,7 @@ from ..contraction.norms import Matrices, Norm, Stretched, floats, stretched
 from ..contraction.rounds import MOST_HELD, courses
 from ..contraction.samples import combinations, drawn
 from ..contraction.words import Word, fastest
+from . import sides
 from .closing import Table, closed_in
 from .one import COARSE, DECIDED, Attempt
 from .runs import map_of
@@ -186,8 +187,18 @@ class SeveralAttempt(Attempt):
         _, self.chosen, self.norm, self.domain, self.needed = best
         if images is not None:
             self.domain = Domain("region", self.domain.radius, spans[0], targets=spans)
-        elif best[0] == np.inf:
+        elif best[0] == np.inf and not self._many_sided():
             self._shrunk()
+
+    def _many_sided(self) -> bool:
+        """A ball of many sides that is kept, where none of the other norms has one."""
+        p = sides.proposed(self)
+        if p is None:
+            return False
+        self.chosen = scaled(p)
+        self.norm = metric(p.kind, self.chosen.rows, self.chosen.inverse, len(self.targets))
+        self.domain = self._within(self.norm, self._largest(self.norm))
+        return True
 
     def _weights(self) -> tuple[Fraction, ...] | None:
         """Of a box that the claim asks for: 1 where it names none."""
@@ -286,10 +297,10 @@ class SeveralAttempt(Attempt):
 
     def _form(self, proves: str, norm: Metric) -> Norm:
         """The norm in which a matrix is seen."""
-        inverse = floats(norm.inverse) if sloped(proves) else None
+        inverse = (floats(norm.tips).T if norm.many else floats(norm.inverse)) if sloped(proves) else None
         if proves == JOINED:
             inverse = np.diag([*np.diag(floats(norm.inverse)), 1.0])
-        return Norm(floats(norm.rows), inverse, norm.kind == "ellipsoid")
+        return Norm(floats(norm.rows), inverse, norm.kind == "ellipsoid", norm.many and sloped(proves))
 
     def _into(self, x: Floats, names: list[str], domain: Domain, norm: Metric) -> Floats:
         """Points moved towards the target until they lie in the ball."""
@@ -365,11 +376,15 @@ class SeveralAttempt(Attempt):
 
     def _shift(self, norm: Metric) -> float:
         """How far held quantities move the target in a step, in a norm (an estimate)."""
+        return to_float(norm.length([Fraction(x) for x in self.target_moves()]))
+
+    def target_moves(self) -> Floats:
+        """How far held quantities move the target of each state in a step (estimates)."""
         far = dict.fromkeys(self.obligations.states, 0.0)
         for s, h in moves_of(self.writer):
             found = self.ranges.search(self.obligations.target_slope(h, s), True, COARSE)
             far[s] += max(abs(found.upper), abs(found.lower)) * to_float(self.obligations.change(h))
-        return to_float(norm.length([Fraction(x) for x in far.values()]))
+        return np.array(list(far.values()))
 
     def _movements(self) -> list[int] | None:
         found = [self.ranges.enclose(self.obligations.target_slope(h, s), None, True) for s, h in moves_of(self.writer)]
@@ -472,7 +487,8 @@ class SeveralAttempt(Attempt):
             at = np.array([[to_float(p[v.name]) for v in matrices.variables] for p in points])
             jacobians = matrices.at(at.reshape(len(points), -1))
             good = np.flatnonzero(np.isfinite(jacobians).all(axis=(1, 2)))
-            found = fastest(floats(self.norm.rows) @ jacobians[good] @ floats(self.norm.inverse))
+            rows, inverse = (floats(x) for x in self.basis())
+            found = fastest(rows @ jacobians[good] @ inverse)
             if found is not None and (best is None or found.rate > best[0].rate):
                 best = found, [points[int(good[k])] for k in found.letters]
         if best is not None and best[0].rate >= to_float(wanted) * SPARE:
@@ -510,13 +526,18 @@ class SeveralAttempt(Attempt):
         seen = [one]
         yield one, one
         others = [(p.rows, p.inverse) for p in self.others if p.kind == "polytope"][:MOST_BASES]
-        for rows, inverse in [(self.norm.rows, self.norm.inverse), *others]:
+        for rows, inverse in [self.basis(), *others]:
             if rows not in seen:
                 seen.append(rows)
                 yield rows, inverse
 
+    def basis(self) -> tuple[Matrix, Matrix]:
+        """The rows of the metric, where there are as many as states, and their inverse; else the states themselves."""
+        one = identity(len(self.obligations.states))
+        return (one, one) if self.norm.many else (self.norm.rows, self.norm.inverse)
+
     def _kept(self, ball: int, pairs: list[int], tables: list[tuple[int, int]], moves: list[int] | None) -> int | None:
-        """The ball is mapped into itself: by its norm and a route, or row by row in its own basis."""
+        """The ball is mapped into itself: by its norm and a route, row by row in its own basis, or by its vertices."""
         w = self.writer
         for pair in pairs:
             with suppress(Rejected):
@@ -526,7 +547,7 @@ class SeveralAttempt(Attempt):
                 return w.append("invariant-rows", "invariant", [ball, *table, *(moves or [])], {}, {})
             except Rejected:
                 continue
-        return None
+        return sides.kept(self, ball, moves) if self.norm.many and moves is not None else None
 
     def _orbits(self, uses: list[int]) -> None:
         """A periodic orbit that takes each state far from its target: proofs/several.md (6)."""

@@ -22,6 +22,7 @@ PAGES = {
     "smaller-ball": ("invariant-set.md", "a ball about the target inside the region"),
     "invariant-region": ("invariant-set.md", "the region is led into itself and holds every target"),
     "invariant-ball": ("invariant-set.md", "the ball is led into itself: kR + ε ≤ R"),
+    "invariant-vertices": ("polytope.md", "the ball is led into itself, all its vertices being led into it"),
     "invariant-rows": ("several.md", "the ball is led into itself, row by row of its norm"),
     "course": ("horizon.md", "what the steps within a horizon stay in"),
     "slope": ("slope.md", "gain and residual from slopes and what is missed at the target"),
