@@ -8,6 +8,7 @@ from typing import Any, NamedTuple
 from ..checker.flows import Flows
 from ..checker.reals import Undefined
 from ..checker.rules import Rejected
+from ..claim import Claim
 from ..stance.trials import Trial
 
 ACCURACY, SHARE = 4e-12, 1e-5  # relative to the largest of the trajectories: this, or that share of the gap
@@ -24,9 +25,10 @@ class Solved(NamedTuple):
     accuracy: float
 
 
-def needed(gap: float) -> float:
-    """The accuracy that serves a relative gap."""
-    return max(ACCURACY, SHARE * min(gap, ROUGHEST))
+def needed(claim: Claim, gap: float) -> float:
+    """The accuracy that serves a relative gap; the best where a value is asked for, which may be known far closer."""
+    valued = any(r.kind == "value" for r in claim.requirements)
+    return ACCURACY if valued else max(ACCURACY, SHARE * min(gap, ROUGHEST))
 
 
 def solved(accuracy: float, tried: Callable[[float, float], Trial], proved: Callable[[Any], Flows]) -> Solved:

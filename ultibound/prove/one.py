@@ -249,7 +249,7 @@ class Attempt:
             self.watch("the flow of the stance", done, float(total))
 
         try:
-            accuracy = needed(self.gap)
+            accuracy = needed(self.claim, self.gap)
             if self.variant not in self.known or self.known[self.variant].accuracy > accuracy:
                 spans = {p.name: self._span(p.gate, p.grid) for p in m.parameters}
                 start = partial(trial, self.obligations.graph, m, self.claim.libraries, spans, watch=watch)
