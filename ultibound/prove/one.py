@@ -235,6 +235,9 @@ class Attempt:
         for s in dict.fromkeys(r.state for r in asked if r.during and r.stance is None and not r.over):
             for x in o.states:
                 growth = o.growth(domain, x, s or "")
+                if len(o.states) == 1:  # nothing counts but the magnitude
+                    self.ranges.enclose(growth, on, magnitude=True, points=False)
+                    continue
                 rough = self.ranges.search(growth, True, COARSE)
                 floor = self.gap * max(abs(rough.upper), abs(rough.lower))  # either end is as close as the larger needs
                 self.ranges.enclose(growth, on, points=False, floor=floor)
