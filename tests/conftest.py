@@ -3,6 +3,9 @@
 from __future__ import annotations
 
 import gc
+import os
+import shutil
+import time
 from collections.abc import Iterator
 from fractions import Fraction
 from typing import Any
@@ -20,12 +23,22 @@ LONGEST = [
     "test_several_soundness", "test_graph_soundness", "checker/test_graph_boundaries", "contraction/test_metrics",
     "test_stance_tightness", "test_horizon", "test_soundness", "checker/test_flows", "published/test_several",
 ]  # fmt: skip
+LAST = ["report/test_report", "test_proofs"]  # they need programs that `.ci/run` may still be installing
 
 
 def pytest_collection_modifyitems(items: list[pytest.Item]) -> None:
     """The longest files of tests first."""
     rank = {f"tests/{name}.py": n for n, name in enumerate(LONGEST)}
-    items.sort(key=lambda item: rank.get(item.nodeid.split("::")[0], len(rank)))
+    rank |= {f"tests/{name}.py": len(LONGEST) + n for n, name in enumerate(LAST, 1)}
+    items.sort(key=lambda item: rank.get(item.nodeid.split("::")[0], len(LONGEST)))
+
+
+def installed(program: str) -> str | None:
+    """The path of a program, None where there is none; while `.ci/run` is installing, once that has ended."""
+    ended, until = os.environ.get("ULTIBOUND_INSTALLED"), time.monotonic() + 600
+    while ended and not os.path.exists(ended) and time.monotonic() < until:
+        time.sleep(0.2)
+    return shutil.which(program)
 
 
 def pytest_terminal_summary(terminalreporter: pytest.TerminalReporter) -> None:

@@ -4,12 +4,12 @@ from __future__ import annotations
 
 import os
 import re
-import shutil
 from pathlib import Path
 
 import pytest
 
 from tests import theorems
+from tests.conftest import installed
 from tests.theorems import (
     COQ,
     INSTALL,
@@ -113,7 +113,7 @@ def test_every_rule_has_its_theorems() -> None:
 
 
 def coq() -> None:
-    if shutil.which("coqc") is None:
+    if installed("coqc") is None:
         if os.environ.get("ULTIBOUND_COQ") == "required":
             pytest.fail("coqc is not installed")
         pytest.skip(f"needs coqc: {INSTALL}")

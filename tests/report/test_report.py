@@ -14,13 +14,12 @@ from fractions import Fraction
 from html.parser import HTMLParser
 from io import BytesIO
 from pathlib import Path
-from shutil import which
 from typing import Any
 
 import numpy as np
 import pytest
 
-from tests.conftest import proved
+from tests.conftest import installed, proved
 from ultibound.certificate.certificate import Certificate
 from ultibound.checker import check
 from ultibound.checker.document import digest
@@ -711,17 +710,15 @@ def test_explain_says_what_cannot_be_proved_yet(tmp_path: Path) -> None:
 
 # --- other programs --------------------------------------------------------------------------------------------------------
 
-CHROMIUM = which("chromium") or which("chromium-browser")
 FLAGS = ["--headless", "--no-sandbox", "--disable-gpu", "--no-first-run", "--disable-sync", "--disable-background-networking",
          "--disable-component-update", "--enable-logging=stderr", "--window-size=1200,900"]  # fmt: skip
 
 
-def browsed(page: Path, home: Path) -> tuple[list[str], list[str]]:
+def browsed(chromium: str, page: Path, home: Path) -> tuple[list[str], list[str]]:
     """What the console said, and what the page asked any address for."""
     log = home / "net.json"
-    assert CHROMIUM is not None
     done = subprocess.run(
-        [CHROMIUM, *FLAGS, f"--user-data-dir={home / 'profile'}", f"--log-net-log={log}", f"--screenshot={home / 'page.png'}", page.as_uri()],
+        [chromium, *FLAGS, f"--user-data-dir={home / 'profile'}", f"--log-net-log={log}", f"--screenshot={home / 'page.png'}", page.as_uri()],
         capture_output=True, text=True, timeout=120, check=False,
     )  # fmt: skip
     assert done.returncode == 0 and (home / "page.png").stat().st_size > 3000, done.stderr[-2000:]
@@ -730,26 +727,26 @@ def browsed(page: Path, home: Path) -> tuple[list[str], list[str]]:
     return [x for x in done.stderr.splitlines() if "CONSOLE" in x], [u for u in origins if not u.startswith("file:")]
 
 
-@pytest.mark.skipif(CHROMIUM is None, reason="apt-get install -y --no-install-recommends chromium")
 def test_in_a_browser_nothing_complains_and_nothing_is_asked_for(document: Document, tmp_path: Path) -> None:
+    chromium = installed("chromium") or installed("chromium-browser")
+    if chromium is None:
+        pytest.skip("apt-get install -y --no-install-recommends chromium")
     bad, good = tmp_path / "bad.html", tmp_path / "good.html"
     bad.write_text(
         '<!DOCTYPE html><title>x</title><img src="http://localhost:9/a.png"><script>console.error("here")</script>'
     )
-    said, asked = browsed(bad, tmp_path)  # the test sees what it looks for
+    said, asked = browsed(chromium, bad, tmp_path)  # the test sees what it looks for
     assert any("here" in x for x in said) and any("localhost:9" in u for u in asked)
     good.write_bytes(html(document))
-    assert browsed(good, tmp_path) == ([], [])
+    assert browsed(chromium, good, tmp_path) == ([], [])
 
 
-LATEX = which("pdflatex")
-
-
-@pytest.mark.skipif(LATEX is None, reason="apt-get install -y --no-install-recommends texlive-latex-base")
 def test_latex_compiles(document: Document, hostile: Accepted, tmp_path: Path) -> None:
     from ultibound.report.theorem import for_a_paper
 
-    assert LATEX is not None
+    pdflatex = installed("pdflatex")
+    if pdflatex is None:
+        pytest.skip("apt-get install -y --no-install-recommends texlive-latex-base")
     copied = for_a_paper(hostile)[1]
     excerpt = (
         "\\documentclass{article}\\usepackage{amsmath,longtable}\\begin{document}\n" + copied.text + "\\end{document}\n"
@@ -762,7 +759,7 @@ def test_latex_compiles(document: Document, hostile: Accepted, tmp_path: Path) -
     }
     for name, data in texts.items():
         (tmp_path / f"{name}.tex").write_bytes(data)
-        done = subprocess.run([LATEX, "-interaction=nonstopmode", "-halt-on-error", "-no-shell-escape", f"{name}.tex"],
+        done = subprocess.run([pdflatex, "-interaction=nonstopmode", "-halt-on-error", "-no-shell-escape", f"{name}.tex"],
                               cwd=tmp_path, capture_output=True, timeout=100, check=False)  # fmt: skip
         assert done.returncode == 0, done.stdout[-1500:]
         assert (tmp_path / f"{name}.pdf").stat().st_size > 5000
