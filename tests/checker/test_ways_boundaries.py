@@ -230,8 +230,8 @@ def seen_across(checker: Any) -> None:
     """Of Jacobians the norm before and the norm after count, of misses the one after alone."""
     box, other = (checker.matrices.metric("box", ((Q(w), Q(0)), (Q(0), Q(1))), ((1 / Q(w), Q(0)), (Q(0), Q(1))), 2) for w in (2, 3))
     one = (Q(1), Q(0)), (Q(0), Q(1))
-    assert checker.graph.across(box, other, "slopes") == checker.matrices.Metric("box", other.rows, box.inverse)
-    assert checker.graph.across(box, other, "misses") == checker.matrices.Metric("box", other.rows, one)
+    assert checker.graph.across(box, other, "slopes") == checker.matrices.Metric("box", other.rows, box.inverse, own=False)
+    assert checker.graph.across(box, other, "misses") == checker.matrices.Metric("box", other.rows, one, own=False)
 
 
 @unit

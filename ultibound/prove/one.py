@@ -6,7 +6,6 @@ from collections.abc import Callable, Sequence
 from contextlib import suppress
 from dataclasses import replace
 from fractions import Fraction
-from functools import partial
 from math import floor, inf, prod
 
 from ..bounding.evaluate import to_float
@@ -19,6 +18,7 @@ from ..certificate.results import assembled
 from ..certificate.squares import Asked, Squares
 from ..checker.derive import Derivation
 from ..checker.derive import varied as statement_varied
+from ..checker.flows import Flows
 from ..checker.graph_outcomes import results_of
 from ..checker.periodic import ALONE
 from ..checker.reals import Undefined
@@ -32,14 +32,14 @@ from ..claim.provable import varied
 from ..contraction.curve import Profile, inward
 from ..contraction.orbits import Steering, orbits, slow_path
 from ..stance.points import Unsolved
-from ..stance.trials import trial
-from .flows import Solved, needed, solved
+from ..stance.trials import Trial, trial
 from .runs import run_out
 
 SHARPER = 1e-2  # factor on the gap when an undecided requirement is pursued
 FINEST = 1e-11
 COARSE = 0.03
 DECIDED = 0.5  # gap at which the sign of what is not near zero is known
+ACCURACY = 4e-12  # of the trial trajectories, relative to the largest of them
 PADDING = 1e-3  # what a library axis may take beyond what the search found
 TARGET_GAP = 1e-8  # suprema are taken over a ball larger by as much: proofs/invariant-set.md (4)
 LEAST_SHARE = 1e-3  # of the gap, for a factor of the sector route that nearly cancels
@@ -57,7 +57,7 @@ TRIED = 4  # orbits, the furthest first
 REACH, ENOUGH = 10_000, 200  # steps of the longest path, and of one that is longer than asked for
 
 
-Known = dict[int, Solved]  # by requirement with ranges of its own, or 0
+Known = dict[int, tuple[Trial, Flows]]  # by requirement with ranges of its own, or 0
 
 
 def apart(claim: Claim) -> list[int]:
@@ -252,12 +252,11 @@ class Attempt:
             self.watch("the flow of the stance", done, float(total))
 
         try:
-            accuracy = needed(self.claim, self.gap)
-            if self.variant not in self.known or self.known[self.variant].accuracy > accuracy:
+            if self.variant not in self.known:
                 spans = {p.name: self._span(p.gate, p.grid) for p in m.parameters}
-                start = partial(trial, self.obligations.graph, m, self.claim.libraries, spans, watch=watch)
-                self.known[self.variant] = solved(accuracy, start, self.writer.flows_of)
-            found, flows, _ = self.known[self.variant]
+                found = trial(self.obligations.graph, m, self.claim.libraries, spans, ACCURACY, watch=watch)
+                self.known[self.variant] = found, self.writer.flows_of(found.witness)
+            found, flows = self.known[self.variant]
             self.ranges.flows = found.table
             self.writer.trajectory(found.witness, flows)
         except (Rejected, Undefined, Unsolved) as why:
