@@ -8,6 +8,7 @@ assignments is again a system, by the chain rule.
 from __future__ import annotations
 
 from fractions import Fraction
+from functools import lru_cache
 from typing import Any
 
 import sympy
@@ -128,7 +129,13 @@ def derived(meaning: Expr, slope: dict[Expr, Expr]) -> Expr:
 def chained(meaning: Expr, slope: dict[Expr, Expr]) -> Expr:
     met = [s for s in meaning.free_symbols if s in slope]
     met.sort(key=lambda s: s.name)
-    return sympy.Add(*(sympy.diff(meaning, s) * slope[s] for s in met))
+    return sympy.Add(*(partial(meaning, s) * slope[s] for s in met))
+
+
+@lru_cache(20_000)
+def partial(meaning: Expr, symbol: Expr) -> Expr:
+    """The derivative of one assignment; most recur in the programs of other obligations."""
+    return sympy.diff(meaning, symbol)
 
 
 def compiled(graph: Graph, root: int, by: str, variables: list[str], curved: bool = False) -> Program:
