@@ -21,6 +21,7 @@ from .walks import Linear, held_choices, linear
 
 KEPT = 3  # ends of walks side by side, a stance
 AWAY = 40  # steps that a run may take to leave the regions
+LULL = 24  # steps after which a run that has stayed within what is wanted is given up
 HALVINGS, NEARER = 12, 1 - 1e-9
 Aim = tuple[int, float] | None  # a state, and the side it is led to (0: either); None: all of them, for their room
 
@@ -95,7 +96,9 @@ def slow(ground: Ground, within: Sequence[str], state: int, size: Fraction, end:
     for start in _starts(ground, within, state, size):
         ends = [x for sign in (1.0, -1.0) for x in _longest(ground, start, sign, end, most)]
         courses = [_followed(ground, start, x) for x in ends]
-        courses += _steered(ground, start, [(state, 1.0), (state, -1.0), (state, 0.0), None], most, leave=False)
+        courses += _steered(
+            ground, start, [(state, 1.0), (state, -1.0), (state, 0.0), None], most, leave=False, end=end
+        )
         for x in courses:
             n = _still_out(ground, start, x, end)
             if n >= 0 and (best is None or n > best[0]):
@@ -231,8 +234,13 @@ def _followed(ground: Ground, start: Start, end: End) -> Course:
     return found
 
 
-def _steered(ground: Ground, start: Start, aims: Sequence[Aim], most: int, leave: bool) -> list[Course]:
-    """Courses steered step by step, each by an aim, until they leave the regions; `leave`: or until one has."""
+def _steered(
+    ground: Ground, start: Start, aims: Sequence[Aim], most: int, leave: bool, end: float = -1.0
+) -> list[Course]:
+    """Courses steered step by step, each by an aim, until they leave the regions; `leave`: or until one has.
+
+    A course is given up that has not been farther than `end` for a while.
+    """
     signed = [(s, e) for s in start.within for e in (start.size, -start.size)]
     courses = [Course(e, [s], [], [start.states(s, e)]) for _ in aims for s, e in signed]
     aimed = [aim for aim in aims for _ in signed]
@@ -242,7 +250,8 @@ def _steered(ground: Ground, start: Start, aims: Sequence[Aim], most: int, leave
     }
     values = {s: m.numbers(start.held, m.fresh) for s, m in ground.maps.items()}
     going = [k for k, x in enumerate(courses) if not ground.outside(x.stances[0], x.states[0])]
-    for _ in range(most):
+    far = dict.fromkeys(going, 0)  # the last step at which it was
+    for n in range(1, most + 1):
         if not going or time.monotonic() > ground.until:
             break
         still, left = list[int](), False
@@ -258,11 +267,14 @@ def _steered(ground: Ground, start: Start, aims: Sequence[Aim], most: int, leave
                     courses[k].chosen.append(int(choice))
                     courses[k].stances.append(ground.then[s][int(t)])
                     courses[k].states.append(each[choice])
-                    out = ground.outside(courses[k].stances[-1], each[choice])
+                    stance = courses[k].stances[-1]
+                    out = ground.outside(stance, each[choice])
+                    if abs(each[choice][start.state] - start.centres[stance][start.state]) > end:
+                        far[k] = n
                     still, left = (still, True) if out else ([*still, k], left)
         if leave and left:
             break
-        going = still
+        going = [k for k in still if n - far[k] <= LULL]
     return courses
 
 
