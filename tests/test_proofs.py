@@ -120,11 +120,12 @@ def coq() -> None:
 
 
 def test_what_theorems_assume(tmp_path: Path) -> None:
-    """No statement rests on more than what is listed; with ULTIBOUND_LONG each one on exactly that."""
+    """All proofs hold, and no statement rests on more than what is listed; with ULTIBOUND_LONG source by source, and each
+    statement on exactly that."""
     coq()
-    compiled(TEXTS, tmp_path)
     groups, known = alike([*CHECKED, *WEAKENED]), letters()
     if os.environ.get("ULTIBOUND_LONG"):
+        compiled(TEXTS, tmp_path)
         every = [(row.last, list(row.names)) for row in (*CHECKED, *WEAKENED)]
     else:
         every = list(groups.items())
@@ -139,7 +140,6 @@ def test_what_is_not_proved_is_an_assumption(tmp_path: Path) -> None:
         r"(Theorem envelope.*?)Proof\..*?Qed\.", r"\1Admitted.", TEXTS["Bound.v"], count=1, flags=re.S
     )
     assert count == 1
-    compiled({"Bound.v": text}, tmp_path)
     (found,) = assumptions({"Bound.v": text}, tmp_path, [["ultimate_bound"]])
     assert any(x.endswith("envelope") for x in found)
     assert not found <= set(letters().values())
