@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from collections.abc import Sequence
+from collections.abc import Callable, Sequence
 from dataclasses import dataclass
 from fractions import Fraction
 from typing import Any
@@ -12,9 +12,12 @@ import numpy as np
 from ..claim.model import Library
 from ..polynomial.flows import FlowTable, Met
 from ..stepmap.program import Program, Step
-from .intervals import UNARY, Branch, Floats, Pair, Table, div, hull, mul, power
+from .intervals import UNARY, Branch, Floats, Pair, Table, add, div, hull, known, mul, power, sub
 
+BINARY = {"add": add, "sub": sub, "mul": mul, "div": div}
+NOWHERE = np.asarray(np.nan)
 NEAR = 1e-15  # share by which rounding may move a tie
+Made = Callable[[list[Pair], Floats, Floats], Pair]  # registers before, lower and upper ends of boxes
 Corner = tuple[str, int, int]  # "max" or "min" and the registers of its two branches
 
 
@@ -61,6 +64,9 @@ class Runner:
     ) -> None:
         self.program, self.variables, self.flows = program, list(variables), flows
         self.slack = NEAR if derivative else -NEAR  # at a tie a derivative meets both branches, a value one: corners.md
+        value = max(program.value, *program.checks, -1) + 1
+        self._ends = value, max(value, *(k + 1 for k in (*program.gradient.values(), *program.curvature.values())), 0)
+        self._made = [_made(step, self.variables, flows is None) for step in program.steps]
         self._tables: dict[tuple[int, str], Table] = {}
         for step in program.steps:
             if step.op == "reading":
@@ -79,16 +85,17 @@ class Runner:
 
         `branches` fixes library cells, `hold` the branch (0 or 1) of corners, a box.
         """
-        count, wanted = len(low), [self.program.value, *self.program.checks]
-        if gradient:
-            wanted += [*self.program.gradient.values(), *self.program.curvature.values()]
+        count = len(low)
         done: list[Pair] = []
         met: dict[int, Branch] = {}
         sides: dict[Corner, tuple[Any, Any]] = {}
         places: dict[tuple[int, ...], Met] = {}
         with np.errstate(all="ignore"):
-            for number, step in enumerate(self.program.steps[: max(wanted) + 1]):
-                if step.op == "reading":
+            for number in range(self._ends[gradient]):
+                step, make = self.program.steps[number], self._made[number]
+                if make is not None:
+                    done.append(make(done, low, high))
+                elif step.op == "reading":
                     table = self._tables[int(step.value or 0), step.name]
                     fixed = branches.get(number) if branches else None
                     pair, met[number] = table.read([done[a] for a in step.args], step.orders, count, fixed)
@@ -100,22 +107,22 @@ class Runner:
                     i, j = (int(x) for x in step.name.split())
                     done.append(self.flows.range(i, j, step.orders, places[step.args]))
                     met[number] = places[step.args].branch
-                elif step.op in ("abs", "max", "min", "pick"):
-                    done.append(_corner(step, done, sides, hold, count, self.slack))
                 else:
-                    done.append(self._step(step, done, low, high))
+                    done.append(_corner(step, done, sides, hold, count, self.slack))
             defined = np.ones(count, bool)
             for k in self.program.checks:
-                defined &= np.isfinite(done[k][0]) & np.isfinite(done[k][1])
-        value = _finite(done[self.program.value], count, defined)
+                for end in done[k][: 1 if known(done[k]) else 2]:
+                    defined &= np.isfinite(end)
+        undefined = ~defined
+        value = _finite(done[self.program.value], undefined)
         g_low, g_high = np.zeros_like(low), np.zeros_like(high)
         if gradient:
             for column, v in enumerate(self.variables):
                 if v in self.program.gradient:
-                    pair = _finite(done[self.program.gradient[v]], count, defined)
+                    pair = _finite(done[self.program.gradient[v]], undefined)
                     g_low[:, column], g_high[:, column] = pair
         bends = {
-            (self.variables.index(u), self.variables.index(v)): _finite(done[k], count, defined)
+            (self.variables.index(u), self.variables.index(v)): _finite(done[k], undefined)
             for (u, v), k in (self.program.curvature.items() if gradient else ())
         }
         split = np.zeros(count, bool)
@@ -123,31 +130,30 @@ class Runner:
             split |= np.prod(spans, axis=0) > 1
         return Run(*value, g_low, g_high, bends, split, met, sides)
 
-    def _step(self, step: Step, done: list[Pair], low: Floats, high: Floats) -> Pair:
-        args = [done[a] for a in step.args]
-        match step.op:
-            case "variable":
-                k = self.variables.index(step.name)
-                return low[:, k], high[:, k]
-            case "number":
-                x = np.asarray(to_float(step.value or Fraction(0)))
-                return x, x
-            case "flow":
-                return np.asarray(np.nan), np.asarray(np.nan)
-            case "pi":
-                return np.asarray(np.pi), np.asarray(np.pi)
-            case "add":
-                return args[0][0] + args[1][0], args[0][1] + args[1][1]
-            case "sub":
-                return args[0][0] - args[1][1], args[0][1] - args[1][0]
-            case "mul":
-                return power(args[0], 2) if step.args[0] == step.args[1] else mul(args[0], args[1])
-            case "div":
-                return div(args[0], args[1])
-            case "power":
-                return power(args[0], int(step.value or 1))
-            case _:
-                return UNARY[step.op](args[0])
+
+def _made(step: Step, variables: Sequence[str], nowhere: bool) -> Made | None:
+    """What fills the register of a step; None where it takes more than the registers before."""
+    match step.op, step.args:
+        case "variable", _:
+            k = variables.index(step.name)
+            return lambda done, low, high: (x := low[:, k], x if low is high else high[:, k])
+        case (("number" | "pi"), _):
+            x = np.asarray(np.pi if step.op == "pi" else to_float(step.value or Fraction(0)))
+            return lambda done, low, high: (x, x)
+        case "power", (i,):
+            n = int(step.value or 1)
+            return lambda done, low, high: power(done[i], n)
+        case "mul", (i, j) if i == j:
+            return lambda done, low, high: power(done[i], 2)
+        case (("add" | "sub" | "mul" | "div"), (i, j)):
+            binary = BINARY[step.op]
+            return lambda done, low, high: binary(done[i], done[j])
+        case "flow", _ if nowhere:
+            return lambda done, low, high: (NOWHERE, NOWHERE)
+        case op, (i,) if op in UNARY:
+            unary = UNARY[op]
+            return lambda done, low, high: unary(done[i])
+    return None
 
 
 def _corner(
@@ -181,9 +187,11 @@ def _corner(
     return low, np.where(one & other, high, np.where(one, first[1], second[1]))
 
 
-def _finite(pair: Pair, count: int, defined: Any) -> Pair:
-    low, high = np.broadcast_to(pair[0], (count,)), np.broadcast_to(pair[1], (count,))
-    bad = np.isnan(low) | np.isnan(high) | ~defined
+def _finite(pair: Pair, undefined: Any) -> Pair:
+    low, high = pair
+    bad = undefined | np.isnan(low)
+    if not known(pair):
+        bad |= np.isnan(high)
     return np.where(bad, -np.inf, low), np.where(bad, np.inf, high)
 
 

@@ -15,7 +15,30 @@ Branch = tuple[list[Any], list[Any]]
 GRID_TOLERANCE = 1e-12  # share of a cell by which a rounded axis value may miss a grid line
 
 
+def known(a: Pair) -> bool:
+    """Whether both ends are one array: points, which cost half."""
+    return a[0] is a[1]
+
+
+def add(a: Pair, b: Pair) -> Pair:
+    low = a[0] + b[0]
+    return low, low if known(a) and known(b) else a[1] + b[1]
+
+
+def sub(a: Pair, b: Pair) -> Pair:
+    low = a[0] - b[1]
+    return low, low if known(a) and known(b) else a[1] - b[0]
+
+
 def mul(a: Pair, b: Pair) -> Pair:
+    if known(b):
+        a, b = b, a
+    if known(a):
+        p = a[0] * b[0]
+        if known(b):
+            return p, p
+        q = a[0] * b[1]
+        return np.minimum(p, q), np.maximum(p, q)
     p, q, r, s = a[0] * b[0], a[0] * b[1], a[1] * b[0], a[1] * b[1]
     return np.minimum(np.minimum(p, q), np.minimum(r, s)), np.maximum(np.maximum(p, q), np.maximum(r, s))
 
@@ -26,43 +49,61 @@ def hull(a: Pair, b: Pair) -> Pair:
 
 def div(a: Pair, b: Pair) -> Pair:
     through = (b[0] <= 0) & (b[1] >= 0)
-    return mul(a, (np.where(through, np.nan, 1 / b[1]), np.where(through, np.nan, 1 / b[0])))
+    low = np.where(through, np.nan, 1 / b[1])
+    return mul(a, (low, low if known(b) else np.where(through, np.nan, 1 / b[0])))
 
 
 def power(a: Pair, n: int) -> Pair:
-    low, high = a[0] ** n, a[1] ** n
+    low = a[0] ** n
+    if known(a):
+        return low, low
+    high = a[1] ** n
     if n % 2:
         return low, high
     return np.where((a[0] <= 0) & (a[1] >= 0), 0.0, np.minimum(low, high)), np.maximum(low, high)
 
 
 def cosh(a: Pair) -> Pair:
-    low, high = np.cosh(a[0]), np.cosh(a[1])
+    low = np.cosh(a[0])
+    if known(a):
+        return low, low
+    high = np.cosh(a[1])
     return np.where((a[0] <= 0) & (a[1] >= 0), 1.0, np.minimum(low, high)), np.maximum(low, high)
 
 
 def sin(a: Pair) -> Pair:
-    return cos((a[0] - np.pi / 2, a[1] - np.pi / 2))
+    low = a[0] - np.pi / 2
+    return cos((low, low if known(a) else a[1] - np.pi / 2))
 
 
 def cos(a: Pair) -> Pair:
-    low, high = np.cos(a[0]), np.cos(a[1])
+    low = np.cos(a[0])
+    if known(a):
+        return low, low
+    high = np.cos(a[1])
     top = np.floor(a[1] / (2 * np.pi)) >= np.ceil(a[0] / (2 * np.pi))
     bottom = np.floor((a[1] - np.pi) / (2 * np.pi)) >= np.ceil((a[0] - np.pi) / (2 * np.pi))
     return np.where(bottom, -1.0, np.minimum(low, high)), np.where(top, 1.0, np.maximum(low, high))
 
 
 def tan(a: Pair) -> Pair:
+    low = np.tan(a[0])
+    if known(a):
+        return low, low
     pole = np.floor((a[1] - np.pi / 2) / np.pi) >= np.ceil((a[0] - np.pi / 2) / np.pi)
-    return np.where(pole, np.nan, np.tan(a[0])), np.where(pole, np.nan, np.tan(a[1]))
+    return np.where(pole, np.nan, low), np.where(pole, np.nan, np.tan(a[1]))
 
 
 def falling(function: Callable[[Floats], Floats]) -> Callable[[Pair], Pair]:
-    return lambda a: (function(a[1]), function(a[0]))
+    return lambda a: rising(function)(a)[::-1]
 
 
 def rising(function: Callable[[Floats], Floats]) -> Callable[[Pair], Pair]:
-    return lambda a: (function(a[0]), function(a[1]))
+    def applied(a: Pair) -> Pair:
+        low = function(a[0])
+        return low, low if known(a) else function(a[1])
+
+    return applied
 
 
 def _log(x: Floats) -> Floats:

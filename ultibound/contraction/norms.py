@@ -175,7 +175,8 @@ class Matrices:
         """The matrices at points (points, variables), as (points, n, c)."""
 
         def entry(e: Entry) -> Floats:
-            return e.runner(x[:, e.columns], x[:, e.columns], gradient=False).low
+            points = x[:, e.columns]
+            return e.runner(points, points, gradient=False).low
 
         return np.stack([np.stack([entry(e) for e in row], axis=1) for row in self.rows], axis=1)
 
