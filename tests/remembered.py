@@ -14,6 +14,17 @@ import ultibound.checker
 from ultibound.checker.rules import Line, Proof, Rejected
 from ultibound.checker.statement import Statement
 
+ADD, READ = Proof.add, ultibound.checker.read_statement
+
+
+@contextmanager
+def every_line_verified() -> Iterator[None]:
+    """Also where lines are verified once, for a while: under other limits the same line is another question."""
+    with pytest.MonkeyPatch.context() as patch:
+        patch.setattr(Proof, "add", ADD)
+        patch.setattr(ultibound.checker, "read_statement", READ)
+        yield
+
 
 @contextmanager
 def lines_checked_once() -> Iterator[None]:
@@ -22,12 +33,11 @@ def lines_checked_once() -> Iterator[None]:
     known: dict[str, tuple[Line | tuple[Any, ...], int]] = {}
     claims: dict[str, Statement] = {}
     names: dict[int, str] = {}  # of claims that are kept
-    real, reading = Proof.add, ultibound.checker.read_statement
 
     def read(text: str, settings: dict[str, str], files: dict[str, str]) -> Statement:
         key = json.dumps([text, settings, files])
         if key not in claims:
-            claims[key] = reading(text, settings, files)
+            claims[key] = READ(text, settings, files)
             names[id(claims[key])] = key
         return claims[key]
 
@@ -38,14 +48,14 @@ def lines_checked_once() -> Iterator[None]:
             proof.history = hashlib.sha256(claim.encode())  # type: ignore[attr-defined]  # a note of the test's own
         digest_ = getattr(proof, "history", None)
         if digest_ is None:  # lines in the making
-            real(proof, raw)
+            ADD(proof, raw)
             return
         digest_.update(repr(raw).encode())
         key = digest_.hexdigest()
         if key not in known:
             before = proof.leaves
             try:
-                real(proof, raw)
+                ADD(proof, raw)
             except Rejected as why:
                 known[key] = why.args, 0  # itself it would keep all that its traceback names
                 raise

@@ -27,6 +27,7 @@ from tests.checker.test_reals import FINE, FUNCTIONS, quarters
 from tests.checker.test_reals import encloses as encloses_value
 from tests.checker.test_reals import value as value_at
 from tests.conftest import proved
+from tests.remembered import every_line_verified
 from ultibound.checker.document import canonical, digest
 
 Entries = dict[str, Any]
@@ -177,6 +178,20 @@ class Questions(dict[str, Question]):
 
     def reject(self, name: str, entries: Entries, place: str, reason: str) -> None:
         self.add(name, Case(sealed(entries), "invalid", place, reason))
+
+
+@contextmanager
+def limited(module: Any, **limits: int) -> Iterator[None]:
+    """With other limits for a while."""
+    before = {name: getattr(module, name) for name in limits}
+    try:
+        for name, n in limits.items():
+            setattr(module, name, n)
+        with every_line_verified():
+            yield
+    finally:
+        for name, n in before.items():
+            setattr(module, name, n)
 
 
 CASES = Questions()
@@ -1478,29 +1493,21 @@ always()
 
 @unit
 def length_of_courses(checker: Any) -> None:
-    before = checker.courses.LONGEST
     entries = region(PLAIN).entries("region", [("settles", "undecided")])
     entries["proof"] = [*entries["proof"], course("orbit", ["0", "0"], ["0", "0"], distance="0")]
-    try:
-        checker.courses.LONGEST = 2
+    with limited(checker.courses, LONGEST=2):
         assert checker.check(sealed(entries)).status == "valid"
-        checker.courses.LONGEST = 1
+    with limited(checker.courses, LONGEST=1):
         assert "steps: a list of 1 to 1" in checker.check(sealed(entries)).reason
-    finally:
-        checker.courses.LONGEST = before
 
 
 @unit
 def number_of_shells(checker: Any) -> None:
-    before = checker.theorems.MOST_SHELLS
     data = sealed(curve(["settles"]).entries("region", [("settles", "proved")]))
-    try:
-        checker.theorems.MOST_SHELLS = 3
+    with limited(checker.theorems, MOST_SHELLS=3):
         assert checker.check(data).status == "valid"
-        checker.theorems.MOST_SHELLS = 2
+    with limited(checker.theorems, MOST_SHELLS=2):
         assert "radii: up to 2 rising numbers" in checker.check(data).reason
-    finally:
-        checker.theorems.MOST_SHELLS = before
 
 
 # split: v⁺ = v/2 - f/4 + w with f = v the correction; x + F - N has slope 3/4, N - x is at most 5/8
@@ -1726,16 +1733,12 @@ def steps_rounded_up(checker: Any) -> None:
     """A level is kept as it is up to a length; beyond it 1/3 is not surely reached from 1."""
     asked = [("steps(v, 1, 1/3) <= 1", "proved"), ("steps(v, 1, 1/3) <= 2", "proved")]
     data = sealed(thirds([that for that, _ in asked]).entries("region", asked))
-    before = checker.results.LONG
-    try:
-        checker.results.LONG = 2  # 3 has two digits
+    with limited(checker.results, LONG=2):  # 3 has two digits
         assert checker.check(data).status == "valid"
-        checker.results.LONG = 1
+    with limited(checker.results, LONG=1):
         assert "[1].verdict: proved is claimed, undecided was derived" in checker.check(data).reason
         less = [("steps(v, 1, 1/3) <= 1", "undecided"), asked[1]]
         assert checker.check(sealed(thirds([that for that, _ in asked]).entries("region", less))).status == "valid"
-    finally:
-        checker.results.LONG = before
 
 
 def courses() -> None:
@@ -2746,15 +2749,11 @@ def forms_of_values(checker: Any) -> None:
     e = evaluator(checker, "max(v, 1/3) - v", bits=24)  # by exact ends, where the arithmetic rounds them apart
     found = e.a.ends(checker.forms.enclose(e, [(Q(1, 3), Q(1))], "c"))
     assert -Q(1, 10**5) < found[0] <= 0 <= found[1] < Q(1, 10**5)
-    before = checker.forms.MOST_BRANCHES
-    try:
-        checker.forms.MOST_BRANCHES = 2
+    with limited(checker.forms, MOST_BRANCHES=2):
         encloses(checker, "abs(v) - v", "", {"v": (-1, 2)}, {"d": (-2, 3), "c": (-2, 2)})
-        checker.forms.MOST_BRANCHES = 1
+    with limited(checker.forms, MOST_BRANCHES=1):
         encloses(checker, "abs(v) - v", "", {"v": (-1, 2)}, {"d": (-2, 3), "c": (-2, 3)})
         encloses(checker, "abs(v) - v", "", {"v": (1, 2)}, {"d": (-1, 1), "cms": (0, 0)})
-    finally:
-        checker.forms.MOST_BRANCHES = before
     # a branch that is not defined where it is not taken leaves what needs no branches
     encloses(checker, "1/max(v, 1/2) + v - v", "", {"v": (-1, 1)}, {"d": (-1, 4), "ms": (1, 2)})
     encloses(checker, "abs(v) - v", "", {"v": (1, 2)}, {"d": (-1, 1), "cms": (0, 0)})
@@ -2811,23 +2810,15 @@ def forms_of_derivatives(checker: Any) -> None:
         checker.forms.enclose(e, [(Q(at[0]), Q(at[1]))], "c")
         assert len(boxes) == runs, (at, boxes)
     # with a single branch, what cannot be held stays refused
-    before = checker.exact.LARGEST
-    try:
-        checker.exact.LARGEST = 5
+    with limited(checker.exact, LARGEST=5):
         encloses(checker, "v**4", "v", {"v": (0, 1)}, {"d": (0, 4)})
         with refuses(checker.reals.Undefined, "a fraction that long"):
             encloses(checker, "v**4", "v", {"v": (0, 1)}, {"c": (0, 4)})
-    finally:
-        checker.exact.LARGEST = before
-    before = checker.forms.MOST_BRANCHES
-    try:
-        checker.forms.MOST_BRANCHES = 2
+    with limited(checker.forms, MOST_BRANCHES=2):
         encloses(checker, cancels, "v", {"v": (-1, 1)}, {"cms": (0, 0)})
-        checker.forms.MOST_BRANCHES = 1
+    with limited(checker.forms, MOST_BRANCHES=1):
         encloses(checker, cancels, "v", {"v": (-1, 1)}, {"cms": (-3, 3)})
         encloses(checker, cancels, "v", {"v": (1, 2)}, {"d": (-2, 2), "cms": (0, 0)})
-    finally:
-        checker.forms.MOST_BRANCHES = before
 
 
 JETS = [

@@ -13,8 +13,8 @@ from typing import Any
 import pytest
 
 import ultibound.checker
-from tests.checker.test_boundaries import BASE, GONE, STEP, Draft, Entries, Questions, but, derivation, refuses
-from tests.checker.test_stance_boundaries import STILL, limited
+from tests.checker.test_boundaries import BASE, GONE, STEP, Draft, Entries, Questions, but, derivation, limited, refuses
+from tests.checker.test_stance_boundaries import STILL
 
 CASES = Questions()
 unit, accept, reject = CASES.unit, CASES.accept, CASES.reject

@@ -17,9 +17,21 @@ import pytest
 
 import ultibound.checker
 from tests.checker import test_graph_boundaries, test_product_boundaries, test_several_boundaries
-from tests.checker.test_boundaries import GONE, STEP, Case, Draft, Entries, Question, but, claim, refuses, sealed
+from tests.checker.test_boundaries import (
+    GONE,
+    STEP,
+    Case,
+    Draft,
+    Entries,
+    Question,
+    but,
+    claim,
+    limited,
+    refuses,
+    sealed,
+)
 from tests.checker.test_boundaries import region as lines_of_region
-from tests.checker.test_stance_boundaries import fall, falling, limited, proves, stood
+from tests.checker.test_stance_boundaries import fall, falling, proves, stood
 
 CASES: dict[str, Question] = {}
 OTHER, LESS = (

@@ -8,15 +8,14 @@ from __future__ import annotations
 
 import itertools
 import math
-from collections.abc import Callable, Iterator, Sequence
-from contextlib import contextmanager
+from collections.abc import Callable, Sequence
 from fractions import Fraction as Q
 from typing import Any
 
 import pytest
 
 import ultibound.checker
-from tests.checker.test_boundaries import STEP, Draft, Questions, but, derivation, refuses
+from tests.checker.test_boundaries import STEP, Draft, Questions, but, derivation, limited, refuses
 from tests.stances import stance
 
 CASES = Questions()
@@ -25,19 +24,6 @@ unit, accept, reject = CASES.unit, CASES.accept, CASES.reject
 
 # tables of numbers: one line each reads better
 # fmt: off
-
-@contextmanager
-def limited(module: Any, **limits: int) -> Iterator[None]:
-    """With other limits for a while."""
-    before = {name: getattr(module, name) for name in limits}
-    try:
-        for name, n in limits.items():
-            setattr(module, name, n)
-        yield
-    finally:
-        for name, n in before.items():
-            setattr(module, name, n)
-
 
 # models: with 4 bits a unit is 1/16
 
