@@ -125,6 +125,7 @@ class Derivation:
         if statement.horizon > 1:
             together(statement, self.motion)
         self.leaves: dict[str, Any] = {}  # of the last tree gone through, by what it proves (several.py)
+        self.meanings: dict[tuple[str, Domain | None], Meaning] = {}  # that were asked for
         self.fixed = {s for s in self.states if not self.terms.variables(self.names().of(f"target({s})"))}
 
     def names(self, bound: dict[str, int] | None = None, cut: str = "", parts: int = 0) -> Names:
@@ -173,6 +174,11 @@ class Derivation:
 
     def meaning(self, name: str, domain: Domain | None) -> Meaning:
         """The obligation of that name; the set is needed where the state runs through it."""
+        if (name, domain) not in self.meanings:
+            self.meanings[name, domain] = self.derived(name, domain)
+        return self.meanings[name, domain]
+
+    def derived(self, name: str, domain: Domain | None) -> Meaning:
         kinds = "target|image|target-miss|target-slope|slope|split-slope|split-residual|growth"
         found = re.fullmatch(rf"({kinds})(@[^\[]+)?\[([^,]+)(?:,([^,]+))?\]", name)
         kind, after, s, by = found.groups() if found else ("", None, self.state, None)

@@ -28,14 +28,24 @@ class Exact:
         return -a[1], -a[0]
 
     def add(self, a: Pair, b: Pair) -> Pair:
-        return self._held(a[0] + b[0], a[1] + b[1])
+        low = a[0] + b[0]
+        return self._held(low, low if a[0] is a[1] and b[0] is b[1] else a[1] + b[1])
 
     def sub(self, a: Pair, b: Pair) -> Pair:
-        return self._held(a[0] - b[1], a[1] - b[0])
+        low = a[0] - b[1]
+        return self._held(low, low if a[0] is a[1] and b[0] is b[1] else a[1] - b[0])
 
     def mul(self, a: Pair, b: Pair) -> Pair:
-        products = (a[0] * b[0], a[0] * b[1], a[1] * b[0], a[1] * b[1])
-        return self._held(min(products), max(products))
+        (p, q), (r, s) = a, b
+        if p is q and r is s:
+            low = high = p * r
+        elif p.numerator >= 0:
+            low, high = (p if r.numerator >= 0 else q) * r, (q if s.numerator >= 0 else p) * s
+        elif q.numerator <= 0:
+            low, high = (q if s.numerator <= 0 else p) * s, (p if r.numerator <= 0 else q) * r
+        else:
+            low, high = min(p * s, q * r), max(p * r, q * s)
+        return self._held(low, high)
 
     def div(self, a: Pair, b: Pair) -> Pair:
         if b[0] <= 0 <= b[1]:
@@ -60,7 +70,7 @@ class Exact:
         return roots[0], roots[1]
 
     def _held(self, low: Fraction, high: Fraction) -> Pair:
-        for q in (low, high):
+        for q in (low,) if low is high else (low, high):
             if max(q.numerator.bit_length(), q.denominator.bit_length()) > LARGEST:
                 raise Undefined("a fraction that long")
         return low, high

@@ -77,7 +77,7 @@ class Evaluator:
         self.fixed: dict[int, Jet] = {}
         self.moving: list[int] = []  # that are evaluated over every box
         self.groups: dict[frozenset[int], tuple[list[int], Known]] = {}  # by their variables: what is remembered
-        self.met: dict[Ends, int] = {}
+        self.met: dict[tuple[int, ...], int] = {}  # ends, as whole numbers: fractions take long to hash
         self.several = False
         self.direction: int | None = None  # a variable by which d is taken instead of the marked name
         self.branch: dict[int, list[range]] = {}
@@ -87,6 +87,7 @@ class Evaluator:
         self.axes: dict[int, Evaluator | None] = {}
         self.known: dict[int, Ends] = {}  # exact ends over the box of this run
         self.shares: dict[tuple[int, int, int], list[Interval]] = {}  # where in a cell of a grid they are
+        self.placed: dict[tuple[int, ...], Interval] = {}  # the same of any value met so far
         for k in sorted({k for each in (root, *beside) for k in terms.below(each)}):
             op, args, _ = self.all[k]
             if op == "variable" or op == "mark" or any(a not in self.fixed for a in args):
@@ -141,7 +142,8 @@ class Evaluator:
             self.met = {}
             for _, known in self.groups.values():
                 known.clear()
-        ends = [self.met.setdefault(x, len(self.met)) for x in box]
+        each = [(p.numerator, p.denominator, q.numerator, q.denominator) for p, q in box]
+        ends = [self.met.setdefault(x, len(self.met)) for x in each]
         for variables, (terms, known) in self.groups.items():
             key = gradient, self.direction, *(ends[i] for i in variables)
             if key in known:
@@ -233,27 +235,40 @@ class Evaluator:
         return total
 
     def linear(self, v: Interval, x: Jet, y: Jet | None, op: str = "neg") -> Jet:
-        a = self.a
+        neg = self.a.neg
+        if y is None:
+            jet = Jet(v, x.d and neg(x.d))
+            jet.g, jet.dg = ({i: p and neg(p) for i, p in mine.items()} for mine in (x.g, x.dg))
+            return jet
+        combined = self.a.add if op == "add" else self.a.sub
 
         def both(p: Interval, q: Interval) -> Interval:
-            if op == "neg":
-                return None if p is None else a.neg(p)
-            q = None if q is None else a.neg(q) if op == "sub" else q
-            return self.plus(p, q)
+            """Their sum or difference, None standing for zero."""
+            if q is None:
+                return p
+            return combined(p, q) if p is not None else q if op == "add" else neg(q)
 
-        jet = Jet(v, both(x.d, y.d if y else None))
-        for mine, of_x, of_y in ((jet.g, x.g, y.g if y else {}), (jet.dg, x.dg, y.dg if y else {})):
+        jet = Jet(v, both(x.d, y.d))
+        for mine, of_x, of_y in ((jet.g, x.g, y.g), (jet.dg, x.dg, y.dg)):
             for i in of_x | of_y:
                 mine[i] = both(of_x.get(i), of_y.get(i))
         return jet
 
     def times(self, x: Jet, y: Jet) -> Jet:
-        plus, prod = self.plus, self.prod
-        jet = Jet(self.a.mul(x.v, y.v), plus(prod(x.d, y.v), prod(x.v, y.d)))
+        mul, add, v, w = self.a.mul, self.a.add, x.v, y.v
+
+        def part(p: Interval, q: Interval) -> Interval:
+            """p w + v q, None standing for zero."""
+            if p is None or q is None:
+                return mul(p, w) if q is None and p is not None else None if q is None else mul(v, q)
+            return add(mul(p, w), mul(v, q))
+
+        jet = Jet(mul(v, w), part(x.d, y.d))
         for i in x.g | y.g:
-            jet.g[i] = plus(prod(x.g.get(i), y.v), prod(x.v, y.g.get(i)))
+            jet.g[i] = part(x.g.get(i), y.g.get(i))
         for i in x.g | y.g if self.second() else ():
-            second = plus(prod(x.dg.get(i), y.v), prod(x.d, y.g.get(i)), prod(x.g.get(i), y.d), prod(x.v, y.dg.get(i)))
+            crossed = self.prod(x.d, y.g.get(i)), self.prod(x.g.get(i), y.d)
+            second = self.plus(part(x.dg.get(i), y.dg.get(i)), *crossed)
             if second is not None:
                 jet.dg[i] = second
         return jet
@@ -442,6 +457,10 @@ class Evaluator:
         """Ends of an axis value: exact where it is rational, so that boxes cut at grid lines keep their cells."""
         if k in self.known:
             return self.known[k]
+        while self.all[k][0] == "mark":
+            k = self.all[k][1][0]
+        if self.all[k][0] == "variable":
+            return box[self.names.index(str(self.all[k][2]))]
         if k not in self.axes:
             rational = all(self.all[x][0] in RATIONAL for x in self.terms.below(k))
             self.axes[k] = Evaluator(self.terms, k, "", self.names, (), Exact()) if rational else None
@@ -486,10 +505,19 @@ class Evaluator:
         """How far along cell i of an axis its value, or each end of it, is: from 0 to 1."""
         key = k, id(lines), i
         if key not in self.shares:
-            low, width = lines[i], lines[i + 1] - lines[i]
-            inner = [min(max((e - low) / width, Fraction(0)), Fraction(1)) for e in ends]
-            self.shares[key] = [self.a.number(t) for t in dict.fromkeys(inner)]
+            low, high = ends
+            self.shares[key] = [self.place(lines, i, e) for e in ((low,) if low == high else ends)]
         return self.shares[key]
+
+    def place(self, lines: tuple[Fraction, ...], i: int, x: Fraction) -> Interval:
+        """How far along cell i one value is; in a tree these often come again."""
+        key = id(lines), i, x.numerator, x.denominator
+        if key not in self.placed:
+            if len(self.placed) > REMEMBERED:
+                self.placed.clear()
+            share = (x - lines[i]) / (lines[i + 1] - lines[i])
+            self.placed[key] = self.a.number(min(max(share, Fraction(0)), Fraction(1)))
+        return self.placed[key]
 
 
 def several(cells: Sequence[range]) -> bool:

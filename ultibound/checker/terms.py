@@ -17,6 +17,7 @@ class Terms:
     def __init__(self) -> None:
         self.all: list[Term] = []
         self.rank: dict[Term, int] = {}
+        self.last: tuple[int, list[int]] = -1, []  # asked about: its terms, which stay what they are
 
     def put(self, op: str, args: tuple[int, ...] = (), payload: Fraction | str | None = None) -> int:
         if args and all(self.all[a][0] == "number" for a in args):
@@ -26,10 +27,10 @@ class Terms:
         if op == "sub" and args[0] == args[1]:  # nothing, where it is defined
             op, args = "mul", (self.put("number", (), Fraction(0)), args[0])
         term = (op, args, payload)
-        if term not in self.rank:
-            self.rank[term] = len(self.all)
+        rank = self.rank.setdefault(term, len(self.all))
+        if rank == len(self.all):
             self.all.append(term)
-        return self.rank[term]
+        return rank
 
     def raised(self, base: int, p: Fraction) -> int:
         """Integer and half-integer powers by roots, repeated products and reciprocals."""
@@ -122,11 +123,14 @@ class Terms:
 
     def below(self, root: int) -> list[int]:
         """Every term the root is built from, in order, the root last."""
-        marked = {root}
-        for k in range(root, -1, -1):
-            if k in marked:
-                marked.update(self.all[k][1])
-        return sorted(marked)
+        if self.last[0] != root:
+            marked, waiting = {root}, [root]
+            while waiting:
+                fresh = set(self.all[waiting.pop()][1]) - marked
+                marked |= fresh
+                waiting += fresh
+            self.last = root, sorted(marked)
+        return self.last[1]
 
     def variables(self, root: int) -> list[str]:
         return sorted({str(self.all[k][2]) for k in self.below(root) if self.all[k][0] == "variable"})
