@@ -238,6 +238,9 @@ EQUIVALENT: dict[Key, str] = {
     **{("ranges", "Evaluator.remembered", f"len({x}) > REMEMBERED", f"len({x}) {sign} REMEMBERED"):
        "how many jets are remembered to save time changes none of them: what is forgotten is evaluated anew"
        for x in ("self.met", "known") for sign in (">=", "<=")},
+    **{("ranges", "Evaluator.place", "len(self.placed) > REMEMBERED", f"len(self.placed) {sign} REMEMBERED"):
+       "what is remembered and what is placed anew are the same"
+       for sign in (">=", "<=")},
     ("forms", "face", "side > 0", "side >= 0"): "a side is 1 or -1",
     ("forms", "face", "side > 0", "side >= 0 (2)"): "a side is 1 or -1",
     ("forms", "second_order", "j > i", "j >= i"): "j == i is the branch before",
@@ -247,6 +250,9 @@ EQUIVALENT: dict[Key, str] = {
     ("exact", "Exact.power", "abs(high)", "high (2)"): "the magnitude of low is the larger one wherever high is below 0",
     ("exact", "Exact.power", "abs(high)", "high"):
         "only where the exponent is even: a negative high is the least magnitude, and its power has the same value",
+    **{("exact", "Exact.mul", f"{x}.numerator {sign}= 0", f"{x}.numerator {sign} 0"):
+       "a product with an end at 0 is 0 whichever other end is taken"
+       for x, sign in (("p", ">"), ("r", ">"), ("s", ">"), ("q", "<"), ("s", "<"), ("r", "<"))},
     **{("reals", "Scaled.mul", f"{x} {sign}= 0", f"{x} {sign} 0"): "a product with an end at 0 is 0 whichever other end is taken"
        for x, sign in (("p", ">"), ("r", ">"), ("s", ">"), ("q", "<"), ("s", "<"), ("r", "<"))},
     ("reals", "Scaled.div", "s < 0", "s <= 0"): "a divisor that ends at 0 is refused, turned round or not",

@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import time
 from collections.abc import Mapping, Sequence
+from contextlib import suppress
 from dataclasses import replace
 from fractions import Fraction
 from itertools import product
@@ -46,6 +47,7 @@ class Writer:
     """Lines of one proof, each with the number it got; domains are those the checker derives."""
 
     part = ""  # the stance, or the step from one to the next, that the lines are about (graph.py)
+    _asked: tuple[tuple[Any, ...], tuple[Meaning, Evaluator]] | None = None  # the obligation measured last
 
     def __init__(self, claim: Claim, derivation: Derivation | None = None) -> None:
         """`derivation`: of a requirement with ranges of its own; else of the claim's text."""
@@ -69,15 +71,11 @@ class Writer:
         return low, high
 
     def leaf_seconds(self, proves: str, bits: int, on: int | None) -> float:
-        """How long one leaf takes in the checker's arithmetic: the first cell, the second time round."""
+        """How long one leaf takes in the checker's arithmetic: the first cell."""
         meaning, evaluator = self._evaluator(proves, bits, on)
-        box, began = [v.cells[0] for v in meaning.variables], 0.0
-        try:
-            for _ in range(2):
-                began = time.monotonic()
-                enclose(evaluator, box, "m")
-        except Undefined:
-            pass
+        began = time.monotonic()
+        with suppress(Undefined):
+            enclose(evaluator, [v.cells[0] for v in meaning.variables], "m")
         return time.monotonic() - began
 
     def point(self, proves: str, at: Mapping[str, str], bits: int, on: int | None) -> tuple[Fraction, Fraction]:
@@ -320,12 +318,16 @@ class Writer:
         return sorted(kept)
 
     def _evaluator(self, proves: str, bits: int, on: int | None) -> tuple[Meaning, Evaluator]:
-        meaning = self.derivation.meaning(proves, self.domain(on))
-        names = [v.name for v in meaning.variables]
-        arithmetic = Scaled(bits) if bits else Exact()
-        libraries = self.derivation.statement.libraries
-        terms, flows = self.derivation.terms, self.flows()
-        return meaning, Evaluator(terms, meaning.root, meaning.by, names, libraries, arithmetic, flows)
+        key = proves, bits, self.domain(on), self.flow
+        if self._asked is None or self._asked[0] != key:
+            meaning = self.derivation.meaning(proves, self.domain(on))
+            names = [v.name for v in meaning.variables]
+            arithmetic = Scaled(bits) if bits else Exact()
+            libraries = self.derivation.statement.libraries
+            terms, flows = self.derivation.terms, self.flows()
+            evaluator = Evaluator(terms, meaning.root, meaning.by, names, libraries, arithmetic, flows)
+            self._asked = key, (meaning, evaluator)
+        return self._asked[1]
 
 
 def _down(q: Fraction, limit: int = EXACT) -> tuple[str, Fraction]:
