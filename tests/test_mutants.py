@@ -62,7 +62,7 @@ GRAPHS = ("graph", "graph_outcomes", "stance_outcomes", "cycles", "cycle_outcome
 SQUARES = ("squares", "polynomials")
 GAINS = ("gains",)
 READING = ("grammar", "numerals", "statement", "tables", "scope", "command")
-SAMPLE, SEED = 10, 20260101
+SAMPLE, SEED = 4, 20260101
 MOST_EQUIVALENT = 0.05
 
 

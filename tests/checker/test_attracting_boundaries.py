@@ -6,9 +6,7 @@ from collections.abc import Sequence
 from fractions import Fraction as Q
 from typing import Any
 
-import pytest
-
-import ultibound.checker
+from tests.checker.questions import all_hold
 from tests.checker.test_absorbed_boundaries import PLAIN, along, bent, on_region, table
 from tests.checker.test_boundaries import BASE, GONE, Case, Entries, Question, but, sealed
 from tests.checker.test_several_boundaries import ONE, Lines, claim, hair, without
@@ -242,7 +240,5 @@ moving()
 in_boxes()
 
 
-@pytest.mark.parametrize("name", CASES)
-def test_attracting_boundary(name: str) -> None:
-    checker: Any = ultibound.checker
-    CASES[name](checker)
+def test_attracting_boundaries() -> None:
+    all_hold(CASES)

@@ -20,9 +20,7 @@ from functools import cache
 from itertools import pairwise, product
 from typing import Any
 
-import pytest
-
-import ultibound.checker
+from tests.checker.questions import all_hold
 from tests.checker.test_reals import FINE, FUNCTIONS, quarters
 from tests.checker.test_reals import encloses as encloses_value
 from tests.checker.test_reals import value as value_at
@@ -3510,6 +3508,5 @@ def test_these_are_lines_that_prove_writes() -> None:
             assert any({**x, "uses": []} == {**line, "uses": []} for x in found), line
 
 
-@pytest.mark.parametrize("name", CASES)
-def test_boundary(name: str) -> None:
-    CASES[name](ultibound.checker)
+def test_boundaries() -> None:
+    all_hold(CASES)

@@ -11,6 +11,7 @@ import pytest
 from scipy.optimize import linprog
 
 import ultibound.checker
+from tests.checker.questions import all_hold
 from tests.checker.test_boundaries import Case, Entries, Question, but, sealed
 from tests.checker.test_several_boundaries import Lines, claim, derivation, hair
 from tests.several_campaign import case
@@ -97,10 +98,8 @@ def by_hand() -> None:
 by_hand()
 
 
-@pytest.mark.parametrize("name", CASES)
-def test_branches_boundary(name: str) -> None:
-    checker: Any = ultibound.checker
-    CASES[name](checker)
+def test_branches_boundaries() -> None:
+    all_hold(CASES)
 
 
 def within(leaf: Leaf, m: Any, room: float) -> bool:

@@ -10,9 +10,7 @@ from collections.abc import Sequence
 from fractions import Fraction as Q
 from typing import Any
 
-import pytest
-
-import ultibound.checker
+from tests.checker.questions import all_hold
 from tests.checker.test_boundaries import GONE, STEP, Entries, Questions, but
 from tests.checker.test_graph_boundaries import (
     NORMS,
@@ -524,7 +522,5 @@ on_the_ground()
 of_no_stances()
 
 
-@pytest.mark.parametrize("name", CASES)
-def test_cycle_boundary(name: str) -> None:
-    checker: Any = ultibound.checker
-    CASES[name](checker)
+def test_cycle_boundaries() -> None:
+    all_hold(CASES)

@@ -6,9 +6,7 @@ from collections.abc import Callable
 from fractions import Fraction as Q
 from typing import Any
 
-import pytest
-
-import ultibound.checker
+from tests.checker.questions import all_hold
 from tests.checker.test_boundaries import GONE, Case, Draft, Entries, Question, but, claim, moved, sealed
 
 CASES: dict[str, Question] = {}
@@ -342,6 +340,5 @@ def sets_of_pieces(checker: Any) -> None:
 # fmt: on
 
 
-@pytest.mark.parametrize("name", CASES)
-def test_boundary(name: str) -> None:
-    CASES[name](ultibound.checker)
+def test_boundaries() -> None:
+    all_hold(CASES)

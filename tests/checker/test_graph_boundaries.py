@@ -14,7 +14,7 @@ from typing import Any
 
 import pytest
 
-import ultibound.checker
+from tests.checker.questions import all_hold
 from tests.checker.test_boundaries import BASE, GONE, STEP, Draft, Entries, Questions, but, refuses
 
 CASES = Questions()
@@ -865,6 +865,5 @@ stepping_where()
 
 
 @pytest.mark.usefixtures("lines_verified_once")
-@pytest.mark.parametrize("name", CASES)
-def test_graph_boundary(name: str) -> None:
-    CASES[name](ultibound.checker)
+def test_graph_boundaries() -> None:
+    all_hold(CASES)

@@ -9,9 +9,7 @@ from collections.abc import Sequence
 from fractions import Fraction as Q
 from typing import Any
 
-import pytest
-
-import ultibound.checker
+from tests.checker.questions import all_hold
 from tests.checker.test_boundaries import GONE, STEP, Draft, Entries, Questions, but, claim, derivation, refuses
 from tests.checker.test_several_boundaries import Lines, hair, without
 from tests.checker.test_several_boundaries import claim as claim_of_two
@@ -780,6 +778,5 @@ elsewhere()
 # fmt: on
 
 
-@pytest.mark.parametrize("name", CASES)
-def test_horizon_boundary(name: str) -> None:
-    CASES[name](ultibound.checker)
+def test_horizon_boundaries() -> None:
+    all_hold(CASES)

@@ -4,11 +4,8 @@ from __future__ import annotations
 
 from collections.abc import Sequence
 from fractions import Fraction as Q
-from typing import Any
 
-import pytest
-
-import ultibound.checker
+from tests.checker.questions import all_hold
 from tests.checker.test_boundaries import GONE, STEP, Questions, but
 from tests.checker.test_several_boundaries import BOX, Lines, ball, claim, hair, in_region, region, without
 
@@ -209,7 +206,5 @@ on_ball()
 held_targets()
 
 
-@pytest.mark.parametrize("name", CASES)
-def test_periodic_boundary(name: str) -> None:
-    checker: Any = ultibound.checker
-    CASES[name](checker)
+def test_periodic_boundaries() -> None:
+    all_hold(CASES)

@@ -10,9 +10,7 @@ from itertools import product
 from math import isqrt
 from typing import Any
 
-import pytest
-
-import ultibound.checker
+from tests.checker.questions import all_hold
 from tests.checker.test_boundaries import STEP, Entries, Questions, but, refuses
 from tests.checker.test_several_boundaries import ONE, Lines, claim, hair, rounding_lines
 
@@ -351,7 +349,5 @@ def what_is_exact_stays_exact(checker: Any) -> None:
         assert 500 < abs(centre).bit_length() <= 513 and 0 <= wide <= 1
 
 
-@pytest.mark.parametrize("name", CASES)
-def test_product_boundary(name: str) -> None:
-    checker: Any = ultibound.checker
-    CASES[name](checker)
+def test_product_boundaries() -> None:
+    all_hold(CASES)

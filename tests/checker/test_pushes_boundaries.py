@@ -10,9 +10,7 @@ from fractions import Fraction as Q
 from types import SimpleNamespace
 from typing import Any
 
-import pytest
-
-import ultibound.checker
+from tests.checker.questions import all_hold
 from tests.checker.test_boundaries import STEP, Entries, Questions, but, derivation, refuses
 from tests.checker.test_graph_boundaries import STILL, regions
 from tests.checker.test_several_boundaries import BOX, hair, rounding_lines
@@ -243,6 +241,5 @@ of_stances()
 # fmt: on
 
 
-@pytest.mark.parametrize("name", CASES)
-def test_pushes_boundary(name: str) -> None:
-    CASES[name](ultibound.checker)
+def test_pushes_boundaries() -> None:
+    all_hold(CASES)

@@ -21,10 +21,8 @@ from pathlib import Path
 from types import SimpleNamespace
 from typing import Any
 
-import pytest
-
-import ultibound.checker
 from tests import corpus
+from tests.checker.questions import all_hold
 from tests.checker.test_boundaries import BASE as PROVED
 from tests.checker.test_boundaries import but, claim, refuses, region, sealed
 from tests.corpus import BASE, CSV, LIBRARY, STANCES, require, swap
@@ -490,6 +488,5 @@ def said_of_another_claim(checker: Any) -> None:
         assert (changed.status, changed.place) == ("invalid", "claim.set") and changed.reason.endswith(": a = 1, b = 2")
 
 
-@pytest.mark.parametrize("name", CASES)
-def test_reading(name: str) -> None:
-    CASES[name](ultibound.checker)
+def test_reading() -> None:
+    all_hold(CASES)

@@ -9,9 +9,7 @@ from collections.abc import Sequence
 from fractions import Fraction as Q
 from typing import Any
 
-import pytest
-
-import ultibound.checker
+from tests.checker.questions import all_hold
 from tests.checker.test_boundaries import GONE, Draft, Entries, Questions, but, derivation
 from tests.checker.test_boundaries import claim as claim_of_one
 from tests.checker.test_cycle_boundaries import AT_REST
@@ -484,7 +482,5 @@ pushed_in_stances()
 held_while_pushed()
 
 
-@pytest.mark.parametrize("name", CASES)
-def test_run_boundary(name: str) -> None:
-    checker: Any = ultibound.checker
-    CASES[name](checker)
+def test_run_boundaries() -> None:
+    all_hold(CASES)

@@ -10,9 +10,7 @@ from collections.abc import Sequence
 from fractions import Fraction as Q
 from typing import Any
 
-import pytest
-
-import ultibound.checker
+from tests.checker.questions import all_hold
 from tests.checker.test_boundaries import BASE, GONE, STEP, Draft, Entries, Questions, but, derivation, limited, refuses
 from tests.checker.test_stance_boundaries import STILL
 
@@ -1190,6 +1188,5 @@ rounding_of_stances()
 # fmt: on
 
 
-@pytest.mark.parametrize("name", CASES)
-def test_several_boundary(name: str) -> None:
-    CASES[name](ultibound.checker)
+def test_several_boundaries() -> None:
+    all_hold(CASES)

@@ -13,10 +13,8 @@ from math import prod
 from types import SimpleNamespace
 from typing import Any
 
-import pytest
-
-import ultibound.checker
 from tests.checker import test_graph_boundaries, test_product_boundaries, test_several_boundaries
+from tests.checker.questions import all_hold
 from tests.checker.test_boundaries import (
     GONE,
     STEP,
@@ -697,7 +695,5 @@ sets()
 stances()
 
 
-@pytest.mark.parametrize("name", CASES)
-def test_squares_boundary(name: str) -> None:
-    checker: Any = ultibound.checker
-    CASES[name](checker)
+def test_squares_boundaries() -> None:
+    all_hold(CASES)

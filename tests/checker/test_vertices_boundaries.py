@@ -9,9 +9,7 @@ from collections.abc import Sequence
 from fractions import Fraction as Q
 from typing import Any
 
-import pytest
-
-import ultibound.checker
+from tests.checker.questions import all_hold
 from tests.checker.test_boundaries import BASE, GONE, Case, Entries, Question, but, sealed
 from tests.checker.test_several_boundaries import ONE, PLAIN, STEP, Lines, claim, hair, without
 
@@ -171,10 +169,8 @@ turning()
 others()
 
 
-@pytest.mark.parametrize("name", CASES)
-def test_vertices_boundary(name: str) -> None:
-    checker: Any = ultibound.checker
-    CASES[name](checker)
+def test_vertices_boundaries() -> None:
+    all_hold(CASES)
 
 
 def test_hexagon_is_turned() -> None:

@@ -9,9 +9,7 @@ from collections.abc import Sequence
 from fractions import Fraction as Q
 from typing import Any
 
-import pytest
-
-import ultibound.checker
+from tests.checker.questions import all_hold
 from tests.checker.test_boundaries import GONE, STEP, Entries, Questions, but, refuses
 from tests.checker.test_graph_boundaries import NORMS, Steps, balls, claim, hair, regions, two
 
@@ -270,7 +268,5 @@ in_two_norms()
 round_and_round()
 
 
-@pytest.mark.parametrize("name", CASES)
-def test_ways_boundary(name: str) -> None:
-    checker: Any = ultibound.checker
-    CASES[name](checker)
+def test_ways_boundaries() -> None:
+    all_hold(CASES)
