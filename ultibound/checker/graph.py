@@ -97,7 +97,7 @@ def of_ranges(statement: Statement, number: int) -> Statement:
 def toward(d: Derivation, after: Derivation) -> Derivation:
     """A stance whose steps lead to the target of the stance that follows."""
     found = copy(d)
-    found.onto, found.leaves, found.meanings = after.statement, {}, {}
+    found.onto, found.leaves, found.meanings = after.statement, {}, {}  # what it means and shows is of its own
     return found
 
 
