@@ -25,6 +25,7 @@ from .terms import Terms
 
 MOST_CELLS = 1_000_000
 MOST_STATES = 6
+REMEMBERED = 300, 1000  # obligations, and cells of each: larger ones are derived whenever they are asked for
 RANGED = ("value", "sensitivity", "always", "throughout")  # requirements that a range proves
 
 
@@ -174,9 +175,14 @@ class Derivation:
 
     def meaning(self, name: str, domain: Domain | None) -> Meaning:
         """The obligation of that name; the set is needed where the state runs through it."""
-        if (name, domain) not in self.meanings:
-            self.meanings[name, domain] = self.derived(name, domain)
-        return self.meanings[name, domain]
+        if (name, domain) in self.meanings:
+            return self.meanings[name, domain]
+        found = self.derived(name, domain)
+        if sum(len(v.cells) for v in found.variables) <= REMEMBERED[1]:
+            if len(self.meanings) == REMEMBERED[0]:
+                self.meanings.clear()
+            self.meanings[name, domain] = found
+        return found
 
     def derived(self, name: str, domain: Domain | None) -> Meaning:
         kinds = "target|image|target-miss|target-slope|slope|split-slope|split-residual|growth"
