@@ -238,12 +238,6 @@ EQUIVALENT: dict[Key, str] = {
     **{("ranges", "Evaluator.remembered", f"len({x}) > REMEMBERED", f"len({x}) {sign} REMEMBERED"):
        "how many jets are remembered to save time changes none of them: what is forgotten is evaluated anew"
        for x in ("self.met", "known") for sign in (">=", "<=")},
-    **{("derive", "Derivation.meaning", f"{before} {sign} {limit}", f"{before} {other} {limit}"):
-       "how many obligations are remembered to save time changes none of them: what is forgotten is derived anew"
-       for before, sign, limit, others in (
-           ("sum((len(v.cells) for v in found.variables))", "<=", "REMEMBERED[1]", "<>"),
-           ("len(self.meanings)", "==", "REMEMBERED[0]", ("!=",)))
-       for other in others},
     **{("ranges", "Evaluator.place", "len(self.placed) > REMEMBERED", f"len(self.placed) {sign} REMEMBERED"):
        "what is remembered and what is placed anew are the same"
        for sign in (">=", "<=")},

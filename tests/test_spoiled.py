@@ -841,8 +841,10 @@ def test_the_one_file_checker_agrees(entries: dict[str, Any], pyz: Path, tmp_pat
     good, bad = tmp_path / "good.cert.json", tmp_path / "bad.cert.json"
     good.write_bytes(resealed(copy.deepcopy(entries)))
     bad.write_bytes(resealed(spoiled(entries, lambda e: e["results"]["gain"].update(upper="0.0001"))))
-    *_, accepted, why, rejected = each(pyz, tmp_path, good, bad).splitlines()
-    assert (accepted, rejected) == ("0", "1") and "results.gain.upper: more is claimed" in why
+    done = each(pyz, tmp_path, good, bad, as_json=True)
+    results, accepted, rejected = done.stdout.splitlines()
+    assert accepted == "0" and json.loads(results)["route"] == entries["results"]["route"], done
+    assert rejected == "1" and "results.gain.upper: more is claimed" in done.stderr
 
 
 def test_what_the_one_file_checker_cannot_read(pyz: Path, tmp_path: Path) -> None:
@@ -850,13 +852,13 @@ def test_what_the_one_file_checker_cannot_read(pyz: Path, tmp_path: Path) -> Non
         assert run(pyz, data, tmp_path).returncode == 2
 
 
-def each(pyz: Path, folder: Path, *paths: Path) -> str:
+def each(pyz: Path, folder: Path, *paths: Path, as_json: bool = False) -> subprocess.CompletedProcess[str]:
     """What the file says of several certificates, and its exit status for each, in one process."""
-    command = [sys.executable, "-I", "-S", "-c", EACH, str(pyz), *map(str, paths)]
-    return subprocess.run(command, capture_output=True, text=True, timeout=600, cwd=folder, check=True).stdout
+    command = [sys.executable, "-I", "-S", "-c", EACH.format(as_json=as_json), str(pyz), *map(str, paths)]
+    return subprocess.run(command, capture_output=True, text=True, timeout=600, cwd=folder, check=True)
 
 
-EACH = "import sys; sys.path.insert(0, sys.argv[1]); from checker.command import run; [print(run(path, None, False, False, False)) for path in sys.argv[2:]]"
+EACH = "import sys; sys.path.insert(0, sys.argv[1]); from checker.command import run; [print(run(path, None, False, {as_json}, False)) for path in sys.argv[2:]]"
 
 
 def test_spoiled_certificates_through_the_one_file_checker(pyz: Path, tmp_path: Path) -> None:
@@ -887,7 +889,7 @@ def test_spoiled_certificates_through_the_one_file_checker(pyz: Path, tmp_path: 
     paths = [tmp_path / f"{k}.json" for k in range(len(spoilt))]
     for path, data in zip(paths, spoilt, strict=True):
         path.write_bytes(data)
-    assert each(pyz, tmp_path, *paths) == "".join(f"{line}1\n" for line in said)
+    assert each(pyz, tmp_path, *paths).stdout == "".join(f"{line}1\n" for line in said)
     good = run(pyz, resealed(copy.deepcopy(entries)), tmp_path, "--json")
     assert good.returncode == 0 and json.loads(good.stdout)["route"] == entries["results"]["route"], good
 

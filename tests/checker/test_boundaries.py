@@ -2593,6 +2593,22 @@ def derivation(checker: Any, text: str, data: dict[str, str] | None = None) -> A
 
 
 @unit
+def obligations_that_are_remembered(checker: Any) -> None:
+    """As many as are allowed, of as many cells, and always what a derivation that remembers nothing finds."""
+    module, text = checker.derive, claim("v/2 + p", uncertain="p = { values = [0, 1, 2] }")  # image[v]: 1 + 3 cells
+    names, before = ("image[v]", "target[v]", "image[v]"), module.REMEMBERED
+    try:
+        module.REMEMBERED = 0, -1
+        fresh = [derivation(checker, text).meaning(name, None) for name in names]
+        for most, cells, kept in ((2, 4, {"image[v]", "target[v]"}), (2, 3, {"target[v]"}), (1, 4, {"image[v]"}), (2, -1, set())):
+            module.REMEMBERED, d = (most, cells), derivation(checker, text)
+            assert [d.meaning(name, None) for name in names] == fresh
+            assert {name for name, _ in d.meanings} == kept, (most, cells)
+    finally:
+        module.REMEMBERED = before
+
+
+@unit
 def number_of_cells(checker: Any) -> None:
     module = checker.derive
     text = claim("v/2 + p*q", uncertain="p = { values = [0, 1, 2] }\nq = { values = [0, 1] }")
