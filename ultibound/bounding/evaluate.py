@@ -17,6 +17,8 @@ from .intervals import UNARY, Branch, Floats, Pair, Table, add, div, hull, known
 BINARY = {"add": add, "sub": sub, "mul": mul, "div": div}
 NOWHERE = np.asarray(np.nan)
 NEAR = 1e-15  # share by which rounding may move a tie
+# of an operand that is not finite they never make something finite; of a quotient that is the dividend
+TELLING = frozenset(["add", "sub", "mul", "div", "power", "sqrt", "log", "sinh", "cosh", "reading", "flow"])
 Made = Callable[[list[Pair], Floats, Floats], Pair]  # registers before, lower and upper ends of boxes
 Corner = tuple[str, int, int]  # "max" or "min" and the registers of its two branches
 
@@ -64,6 +66,7 @@ class Runner:
     ) -> None:
         self.program, self.variables, self.flows = program, list(variables), flows
         self.slack = NEAR if derivative else -NEAR  # at a tie a derivative meets both branches, a value one: corners.md
+        self._checks = _telling(program)
         value = max(program.value, *program.checks, -1) + 1
         self._ends = value, max(value, *(k + 1 for k in (*program.gradient.values(), *program.curvature.values())), 0)
         self._made = [_made(step, self.variables, flows is None) for step in program.steps]
@@ -110,7 +113,7 @@ class Runner:
                 else:
                     done.append(_corner(step, done, sides, hold, count, self.slack))
             defined = np.ones(count, bool)
-            for k in self.program.checks:
+            for k in self._checks:
                 for end in done[k][: 1 if known(done[k]) else 2]:
                     defined &= np.isfinite(end)
         undefined = ~defined
@@ -129,6 +132,16 @@ class Runner:
         for _, spans in met.values():
             split |= np.prod(spans, axis=0) > 1
         return Run(*value, g_low, g_high, bends, split, met, sides)
+
+
+def _telling(program: Program) -> list[int]:
+    """The registers to be checked without those that another one tells of: it is finite only where they are."""
+    told: set[int] = set()
+    for k in program.checks:
+        step = program.steps[k]
+        if step.op in TELLING and not (step.op == "power" and step.value == 0):
+            told |= set(step.args[:1] if step.op == "div" else step.args)
+    return [k for k in program.checks if k not in told]
 
 
 def _made(step: Step, variables: Sequence[str], nowhere: bool) -> Made | None:

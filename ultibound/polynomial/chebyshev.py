@@ -43,16 +43,16 @@ def derivative(count: int) -> Floats:
 
 def expanded(at: Floats, degree: int, first: int, last: int) -> Floats:
     """Taylor coefficients of T_0 .. T_degree at points (boxes,): (boxes, orders first .. last, degree + 1)."""
-    found = np.zeros((len(at), last + 1, degree + 1))
-    found[:, 0, 0] = 1
+    found = np.zeros((degree + 1, len(at), last + 1))
+    found[0, :, 0] = 1
     if degree:
-        found[:, 0, 1] = at
+        found[1, :, 0] = at
         if last:
-            found[:, 1, 1] = 1
+            found[1, :, 1] = 1
     for k in range(2, degree + 1):
-        found[:, :, k] = 2 * at[:, None] * found[:, :, k - 1] - found[:, :, k - 2]
-        found[:, 1:, k] += 2 * found[:, :-1, k - 1]
-    return found[:, first:]
+        found[k] = 2 * at[:, None] * found[k - 1] - found[k - 2]
+        found[k, :, 1:] += 2 * found[k - 1, :, :-1]
+    return np.moveaxis(found, 0, 2)[:, first:]
 
 
 def factorials(first: int, last: int) -> Floats:

@@ -55,8 +55,8 @@ class Errors:
 class Part:
     """The cells and pieces met by the boxes of some `rows`, one after another: each is met by the box `owner`.
 
-    `widths`: of the piece, and half of the cell by each parameter; `centre`: of what is met, in units of the cell, and
-    `powers` the monomials of its reach; `time`: middle and reach in the piece, None at touchdown.
+    `widths`: of the piece, and half of the cell by each parameter; `moves`: to the centre of what is met, and `powers`
+    the monomials of its reach; `time`: middle and reach in the piece, None at touchdown.
     """
 
     rows: slice
@@ -65,7 +65,7 @@ class Part:
     cell: Any
     piece: Any
     widths: list[Floats]
-    centre: Floats
+    moves: Floats
     powers: Floats
     time: Pair | None
     last: tuple[tuple[int, int, int], Floats] | None = None  # of the entry and order last read
@@ -153,7 +153,7 @@ class FlowTable:
         firsts.append(first)
         spans.append(np.maximum(last - first, 0) + 1)
         many = np.where(outside, 1, np.prod(spans, axis=0))
-        size = len(self.terms.exponents) * (self.degrees[0] + 1)
+        size = len(self.terms.exponents) * max(self.degrees[0] + 1, len(self.terms.exponents))
         parts = [
             self._part(
                 rows,
@@ -191,7 +191,7 @@ class FlowTable:
         if not (np.all(wide[0][0] == 1) and np.all(wide[0][1] == 1)):
             a, b = (np.clip((x[owner] + 1 - 2 * f) / (g - f) - 1, -1, 1) for x in wide[0])
             time = (a + b) / 2, (b - a) / 2
-        return Part(rows, starts, owner, cell, piece, [g - f, *halves], to, powers, time)
+        return Part(rows, starts, owner, cell, piece, [g - f, *halves], self.terms.moves(to), powers, time)
 
     def range(self, i: int, j: int, orders: tuple[int, ...], met: Met) -> Pair:
         """Range a box of Φ_ij differentiated `orders` times by (σ, *parameters).
@@ -240,7 +240,7 @@ class FlowTable:
                 weights *= factorials(order, last)[:, None]
                 column = j - 1 if j else self.columns - 1
                 local = self.coefficients[part.cell, part.piece, column, i - 1] @ weights.transpose(0, 2, 1)
-            part.last = key, self.terms.shifted(local, part.centre)
+            part.last = key, part.moves @ local
         return part.last[1]
 
     def _end(self, i: int, j: int, order: int) -> Floats:

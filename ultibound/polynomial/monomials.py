@@ -5,7 +5,7 @@ from __future__ import annotations
 from collections.abc import Sequence
 from functools import lru_cache
 from itertools import product
-from math import comb, perm
+from math import comb, perm, prod
 from typing import Any
 
 import numpy as np
@@ -23,34 +23,29 @@ class Monomials:
         self.exponents = [a for a in product(range(degree + 1), repeat=size) if sum(a) <= degree]
         self.rank = {a: k for k, a in enumerate(self.exponents)}
         self.powers = np.array(self.exponents, int).reshape(len(self.exponents), size)
-        self._moves: list[list[tuple[Any, Any, Any]]] = []
-        for axis in range(size):
-            moves = []
-            for m in range(1, degree + 1):
-                source = [k for k, a in enumerate(self.exponents) if a[axis] >= m]
-                target = [self.rank[_less(self.exponents[k], axis, m)] for k in source]
-                binomial = [float(comb(self.exponents[k][axis], m)) for k in source]
-                moves.append((np.array(source), np.array(target), np.array(binomial)))
-            self._moves.append(moves)
+        below = (self.powers[:, None] <= self.powers).all(axis=2)
+        self._target, self._source = np.nonzero(below)
+        exponents = [(self.exponents[s], self.exponents[t]) for s, t in zip(self._source, self._target, strict=True)]
+        self._lost = np.array([self.rank[tuple(x - y for x, y in zip(a, b, strict=True))] for a, b in exponents], int)
+        self._ways = np.array([float(prod(map(comb, a, b))) for a, b in exponents])
         self._slopes: dict[tuple[int, ...], tuple[Any, Any, Floats]] = {}
 
     def at(self, points: Floats) -> Floats:
         """Values of the monomials at points (…, size): (…, count)."""
         out = np.ones((*points.shape[:-1], len(self.exponents)))
         for axis in range(self.size):
-            out = out * points[..., axis, None] ** self.powers[:, axis]
+            powers = [np.ones(points.shape[:-1])]
+            for _ in range(self.degree):
+                powers.append(powers[-1] * points[..., axis])
+            out *= np.stack(powers, axis=-1)[..., self.powers[:, axis]]
         return out
 
-    def shifted(self, coefficients: Floats, to: Floats) -> Floats:
-        """Coefficients (boxes, count, …) of the same polynomial in coordinates counted from `to`, (boxes, size)."""
-        for axis, moves in enumerate(self._moves):
-            x = to[:, axis].reshape(-1, *(1,) * (coefficients.ndim - 1))
-            out, power = coefficients.copy(), np.ones_like(x)
-            for source, target, binomial in moves:
-                power = power * x
-                out[:, target] += coefficients[:, source] * binomial.reshape(-1, *(1,) * (out.ndim - 2)) * power
-            coefficients = out
-        return coefficients
+    def moves(self, to: Floats) -> Floats:
+        """Matrices (boxes, count, count) from the coefficients of a polynomial to those counted from `to`, (boxes, size)."""
+        count = len(self.exponents)
+        out = np.zeros((len(to), count * count))
+        out[:, self._target * count + self._source] = self.at(to)[:, self._lost] * self._ways
+        return out.reshape(len(to), count, count)
 
     def slope(self, orders: Sequence[int]) -> tuple[Any, Any, Floats]:
         """Ranks of the monomials left by a derivative, of those they come from, and the factors."""
@@ -64,10 +59,6 @@ class Monomials:
                 factor.append(float(np.prod([perm(x, o) for x, o in zip(a, orders, strict=True)])))
         found = self._slopes[tuple(orders)] = np.array(target, int), np.array(source, int), np.array(factor)
         return found
-
-
-def _less(exponents: tuple[int, ...], axis: int, by: int) -> tuple[int, ...]:
-    return tuple(x - by * (k == axis) for k, x in enumerate(exponents))
 
 
 @lru_cache(maxsize=64)
