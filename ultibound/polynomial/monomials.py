@@ -41,7 +41,7 @@ class Monomials:
         return out
 
     def moves(self, to: Floats) -> Floats:
-        """Matrices (boxes, count, count) from the coefficients of a polynomial to those counted from `to`, (boxes, size)."""
+        """From the coefficients of a polynomial to those counted from `to`, (boxes, size): (boxes, count, count)."""
         count = len(self.exponents)
         out = np.zeros((len(to), count * count))
         out[:, self._target * count + self._source] = self.at(to)[:, self._lost] * self._ways
