@@ -7,15 +7,27 @@ from fractions import Fraction
 import numpy as np
 import pytest
 
+from tests.polynomial.test_flows import table
 from ultibound.bounding.evaluate import Runner
+from ultibound.claim.model import Library
 from ultibound.stepmap.program import Program, Step
+
+ENDS = tuple(map(Fraction, (-9, 0, 9)))
+LIBRARY = Library("gaits.csv", ("at",), (), (ENDS,), {"c": tuple(map(Fraction, (1, 3, 2)))})
+FLOWS = table(1, np.array([0.0, 1.0]))
+
+
+def overflow(p: Program, x: int) -> Step:
+    return Step("exp", (p.add(Step("mul", (p.add(Step("number", value=Fraction(10**4))), x))),))
+
 
 UNDEFINED = {  # of x: somewhere in [-1, 4], near 0 and beyond what floats hold
     "quotient": lambda p, x: Step("div", (p.add(Step("number", value=Fraction(1))), x)),
     "logarithm": lambda p, x: Step("log", (x,)),
     "root": lambda p, x: Step("sqrt", (x,)),
     "arcsine": lambda p, x: Step("asin", (p.add(Step("add", (x, p.add(Step("number", value=Fraction(1, 2)))))),)),
-    "overflow": lambda p, x: Step("exp", (p.add(Step("mul", (p.add(Step("number", value=Fraction(10**4))), x))),)),
+    "overflow": overflow,
+    "overflow below": lambda p, x: Step("sub", (p.add(Step("number", value=Fraction(1))), p.add(overflow(p, x)))),
 }
 ABOVE = {  # of what may be undefined, and of x
     "nothing": lambda p, y, x: Step("add", (y, x)),
@@ -26,6 +38,12 @@ ABOVE = {  # of what may be undefined, and of x
     "square": lambda p, y, x: Step("power", (y,), Fraction(2)),
     "cube": lambda p, y, x: Step("power", (y,), Fraction(3)),
     "power 0": lambda p, y, x: Step("power", (y,), Fraction(0)),
+    "power -1": lambda p, y, x: Step("power", (y,), Fraction(-1)),
+    "reading": lambda p, y, x: Step("reading", (y,), Fraction(0), "c", (0,)),
+    "flow": lambda p, y, x: Step("flow", (p.add(Step("number", value=Fraction(1))), y), name="1 1", orders=(0, 0)),
+    "time of a flow": lambda p, y, x: Step(
+        "flow", (y, p.add(Step("number", value=Fraction(1)))), name="1 1", orders=(0, 0)
+    ),
     "max": lambda p, y, x: Step("max", (y, x)),
     "min": lambda p, y, x: Step("min", (x, y)),
     **{
@@ -46,7 +64,7 @@ def test_what_is_nowhere_finite_is_told_however_it_is_used(below: str, above: st
     ends = np.array([-1.0, -0.3, -1e-3, 0.0, 1e-3, 0.3, 0.6, 1.0, 4.0])
     low, high = (a.ravel()[:, None] for a in np.meshgrid(ends, ends))
     low, high = low[low <= high][:, None], high[low <= high][:, None]
-    short, whole = Runner(p, ["x"], ()), Runner(p, ["x"], ())
+    short, whole = (Runner(p, ["x"], [LIBRARY], flows=FLOWS) for _ in range(2))
     whole._checks = list(p.checks)  # what is shortened
     assert len(short._checks) < len(p.checks)
     found, wanted = (~np.isfinite(r(low, high).low) for r in (short, whole))

@@ -72,11 +72,13 @@ def proved(w: Words, motion: Motion, found: dict[str, Any], libraries: Sequence[
     return flows, flows.error
 
 
-def assert_least(w: Words, motion: Motion, found: dict[str, Any], flows: Flows) -> None:
+def assert_least(
+    w: Words, motion: Motion, found: dict[str, Any], flows: Flows, libraries: Sequence[Library] = ()
+) -> None:
     """What is proved may be claimed, and nothing less."""
-    trajectory(w.terms, motion, (), found, flows.error)
+    trajectory(w.terms, motion, libraries, found, flows.error)
     with pytest.raises(Rejected, match=r"\Aerror: less than what is proved"):
-        trajectory(w.terms, motion, (), found, flows.error - Q(1, flows.system.models.unit))
+        trajectory(w.terms, motion, libraries, found, flows.error - Q(1, flows.system.models.unit))
 
 
 def cells(flows: Flows, at: Sequence[Ends], touching: bool = False) -> list[range]:
@@ -352,6 +354,7 @@ def test_the_gait_at_random_points(both: bool) -> None:
     g, rng = GAITS[both], random.Random(both)
     flows, error = gait(both)
     assert error < (Q(1, 10**9) if both else Q(1, 10**10))
+    assert_least(g.words, g.motion, g.stated((15, 5)), flows, [g.library])
     n, h = len(flows.cuts), 2e-3
     for _ in range(12):
         p = [

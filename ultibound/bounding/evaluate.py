@@ -139,7 +139,7 @@ def _telling(program: Program) -> list[int]:
     told: set[int] = set()
     for k in program.checks:
         step = program.steps[k]
-        if step.op in TELLING and not (step.op == "power" and step.value == 0):
+        if step.op in TELLING and not (step.op == "power" and (step.value or 0) <= 0):
             told |= set(step.args[:1] if step.op == "div" else step.args)
     return [k for k in program.checks if k not in told]
 
