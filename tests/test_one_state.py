@@ -11,6 +11,7 @@ from typing import Any
 import pytest
 
 from tests.conftest import ends, proved
+from ultibound.certificate.enclosing import Encloser
 from ultibound.checker import check
 from ultibound.checker.derive import Derivation, Domain, Unprovable, varied
 from ultibound.checker.ranges import Evaluator
@@ -318,3 +319,27 @@ def test_radii_rise_however_little_is_gained(less: str, shells: int) -> None:
     """What is led inward by less than the written digits show ends the shells."""
     radii = inward(Fraction(1), lambda rho: float(rho) * (1 - float(less)), 1e-14, 60)
     assert len(radii) == shells and all(a < b for a, b in pairwise((Fraction(0), *radii)))
+
+
+def test_no_range_is_searched_again_at_the_same_gap(monkeypatch: pytest.MonkeyPatch) -> None:
+    """v/2 − 0.3 v³ + d cos(v) is bound by some 0.192 where the error curve is followed closely, by 0.2 where it is not."""
+    next_, more = "0.5*v - 0.3*v**3 + d*cos(v)", "[uncertain]\nd = [-0.1, 0.1]\n"
+    text = claim(next_, ["bound(v) <= 0.195"], "[-1, 1]", more=more).text
+    text += (
+        '[[require]]\nthat = "bound(v) <= 0.0995"\nover = { d = [-0.05, 0.05] }\n'  # the same names over other ranges
+    )
+    searched: list[tuple[Any, ...]] = []
+    measured = Encloser._measured
+
+    def noted(self: Encloser, obligation: Any, on: int | None, *sizes: Any) -> Any:
+        searched.append((id(self.known), obligation.name, self.writer.domain(on), *sizes))
+        return measured(self, obligation, on, *sizes)
+
+    monkeypatch.setattr(Encloser, "_measured", noted)
+    certificate = proved(text)
+    assert verdicts(certificate.results) == ["proved", "proved"] and len(searched) == len(set(searched)) > 20
+    # what is remembered is what would be found again
+    monkeypatch.setattr(Encloser, "known", property(lambda self: {}, lambda self, known: None), raising=False)
+    once = len(searched)
+    searched.clear()
+    assert proved(text).to_bytes() == certificate.to_bytes() and len(searched) > once

@@ -6,6 +6,7 @@ import hashlib
 import os
 import tempfile
 from dataclasses import dataclass, field
+from functools import cache
 from importlib import metadata
 from pathlib import Path
 from typing import Any
@@ -92,6 +93,11 @@ def _umask() -> int:
     return mask
 
 
+@cache
+def _versions() -> dict[str, str]:
+    return {name: metadata.version(name) for name in ("ultibound", *LIBRARIES)}
+
+
 def sealed(claim: Claim, results: dict[str, Any], proof: list[dict[str, Any]], interrupted: bool) -> Certificate:
     """The certificate of a claim: its text and data verbatim, results, lines, versions, digest."""
     entries: dict[str, Any] = {
@@ -107,6 +113,6 @@ def sealed(claim: Claim, results: dict[str, Any], proof: list[dict[str, Any]], i
         "results": results,
         "proof": proof,
         "assumptions": [],
-        "made_with": {name: metadata.version(name) for name in ("ultibound", *LIBRARIES)},
+        "made_with": dict(_versions()),
     }
     return Certificate({**entries, "digest": digest(entries)}, interrupted)

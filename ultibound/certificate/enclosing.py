@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 import time
-from collections.abc import Callable
+from collections.abc import Callable, Hashable
 from dataclasses import dataclass
 from fractions import Fraction
 from math import log2
@@ -24,6 +24,8 @@ BITS = 72
 TWICE = 2.0  # a leaf found is measured in the checker's arithmetic, and checked at the end
 PATIENCE = 400  # leaves beyond which second derivatives pay
 Watch = Callable[[str, int, float], None]
+Ends = tuple[Fraction, Fraction]
+Taken = tuple[dict[str, str], Ends]  # a point as a witness, and what the value there lies between
 
 
 @dataclass(frozen=True, slots=True)
@@ -43,11 +45,29 @@ class Proved:
         return max(abs(self.lower), abs(self.upper))
 
 
-class Encloser:
-    """Writes range and point lines within one gap; `limits` tells what stopped each search."""
+@dataclass(frozen=True, slots=True)
+class Measured:
+    """A range as it was searched and then measured: ends, points with the values there, seconds in the measuring."""
 
-    def __init__(self, claim: Claim, graph: Graph, writer: Writer, gap: float, until: float, watch: Watch) -> None:
+    found: Found
+    bits: int
+    ends: Ends
+    taken: list[Taken]
+    spent: float
+
+
+class Encloser:
+    """Writes range and point lines within one gap; `limits` tells what stopped each search.
+
+    `known`: what earlier passes through the same claim measured, which is not searched again.
+    """
+
+    def __init__(
+        self, claim: Claim, graph: Graph, writer: Writer, gap: float, until: float, watch: Watch,
+        known: dict[Hashable, Measured] | None = None,
+    ) -> None:  # fmt: skip
         self.claim, self.graph, self.writer, self.gap, self.until, self.watch = claim, graph, writer, gap, until, watch
+        self.known = {} if known is None else known
         self.interrupted = False
         self.limits: dict[str, str] = {}
         self.flows: FlowTable | None = None  # of the stance, where there are dynamics
@@ -70,11 +90,33 @@ class Encloser:
         `floor` is an absolute gap that is enough whatever the size of the quantity, `cells` a limit of leaves;
         `side`: 1, -1: only the upper, the lower end is wanted.
         """
-        w, name, wanted = self.writer, obligation.name, gap or self.gap
+        name, wanted = obligation.name, gap or self.gap
+        key = self.writer.named(name), self.writer.domain(on), magnitude, wanted, floor, cells, side
+        m = self.known.get(key) or self._measured(obligation, on, magnitude, wanted, floor, cells, side)
+        if m is None:
+            return None
+        if m.found.stopped in ("", "cells"):  # else another pass may come further
+            self.known[key] = m
+        self.spent += m.spent
+        self.limits[name] = "" if cells else m.found.stopped
+        witness = {"bits": m.bits, "trees": list(m.found.trees)}
+        line = self.writer.enclosed("range", name, witness, m.ends, on)
+        if points:
+            self._write_points(name, m.taken, magnitude, m.bits, on)
+        concluded = self.writer.proof.lines[line].concludes
+        low, high = concluded["lower"], concluded["upper"]
+        least, most = min((t[1][1] for t in m.taken), default=high), max((t[1][0] for t in m.taken), default=low)
+        return Proved(line, low, high, least, most, m.found.stopped)
+
+    def _measured(
+        self, obligation: Obligation, on: int | None, magnitude: bool, gap: float, floor: float, cells: int, side: int
+    ) -> Measured | None:
+        """Searched, and measured in the checker's arithmetic: finer where that is wider than the gap allows."""
+        w, name, spent = self.writer, obligation.name, 0.0
         rational, share = w.rational(name, on), 1.0
         later = TWICE * w.leaf_seconds(name, 0 if rational else BITS, on)
         for _ in range(5):
-            found = self.search(obligation, magnitude, wanted * share, floor * share, cells, side, later)
+            found = self.search(obligation, magnitude, gap * share, floor * share, cells, side, later)
             bits = 0 if rational else BITS + _extra(found)
             self.watch(f"{name}: enclosing the leaves in the checker's arithmetic", found.leaves, found.upper)
             began = time.monotonic()
@@ -92,30 +134,23 @@ class Encloser:
                 if found.stopped:
                     return None
                 continue
-            self.spent += time.monotonic() - began
-            taken = [self._point(name, p, bits, on) for p in (found.highest, found.lowest)]
-            if found.stopped or _close(ends, [t[1] for t in taken if t], magnitude, wanted, floor, side):
+            spent += time.monotonic() - began
+            taken = [t for p in (found.highest, found.lowest) if (t := self._point(name, p, bits, on)) is not None]
+            if found.stopped or _close(ends, [t[1] for t in taken], magnitude, gap, floor, side):
                 break
             share /= 8
         else:
             if name in self.limits:
                 return None
-        self.limits[name] = "" if cells else found.stopped
-        line = w.enclosed("range", name, {"bits": bits, "trees": list(found.trees)}, ends, on)
-        if points:
-            self._write_points(name, [t for t in taken if t], magnitude, bits, on)
-        concluded = w.proof.lines[line].concludes
-        low, high = concluded["lower"], concluded["upper"]
-        least, most = min((t[1][1] for t in taken if t), default=high), max((t[1][0] for t in taken if t), default=low)
-        return Proved(line, low, high, least, most, found.stopped)
+        return Measured(found, bits, ends, taken, spent)
 
     def points(self, obligation: Obligation, on: int) -> None:
         """The points nearest the ends of a range, without the range."""
         name = obligation.name
         bits = 0 if self.writer.rational(name, on) else BITS
         found = self.search(obligation, False, self.gap)
-        taken = [self._point(name, p, bits, on) for p in (found.highest, found.lowest)]
-        self._write_points(name, [t for t in taken if t], False, bits, on)
+        taken = [t for p in (found.highest, found.lowest) if (t := self._point(name, p, bits, on)) is not None]
+        self._write_points(name, taken, False, bits, on)
 
     def point(self, obligation: Obligation, at: Point, on: int) -> None:
         """One point, as another search found it."""
@@ -168,23 +203,14 @@ class Encloser:
             raise KeyboardInterrupt
         self.interrupted, self.until = True, 0.0
 
-    def _point(
-        self, name: str, point: Point, bits: int, on: int | None
-    ) -> tuple[dict[str, str], tuple[Fraction, Fraction]] | None:
+    def _point(self, name: str, point: Point, bits: int, on: int | None) -> Taken | None:
         at = self.writer.spelled(name, point, on)
         try:
             return at, self.writer.point(name, at, bits, on)
         except (Undefined, Rejected):
             return None
 
-    def _write_points(
-        self,
-        name: str,
-        taken: list[tuple[dict[str, str], tuple[Fraction, Fraction]]],
-        magnitude: bool,
-        bits: int,
-        on: int | None,
-    ) -> None:
+    def _write_points(self, name: str, taken: list[Taken], magnitude: bool, bits: int, on: int | None) -> None:
         """The points that say most: the one of largest magnitude, or those of the largest and smallest value."""
         if not taken:
             return

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+from collections.abc import Hashable
 from dataclasses import dataclass
 from fractions import Fraction
 
@@ -29,16 +30,19 @@ class Graph:
 
     def __init__(self) -> None:
         self.gates: list[Gate] = []
-        self._number: dict[Gate, int] = {}
+        self._number: dict[Hashable, int] = {}  # by operation and arguments, a value as whole numbers: fast to hash
 
     def add(self, op: str, *args: int, value: Fraction | None = None, name: str = "") -> int:
         if op == "sub" and args[0] == args[1] and self.gates[args[0]].op != "number":
             op, args = "mul", (self.number(0), args[0])  # nothing, where it is defined
-        gate = self._folded(op, args) or Gate(op, args, value, name)
-        number = self._number.get(gate)
+        folded = self._folded(op, args)
+        if folded is not None:
+            op, args, value = "number", (), folded
+        key = op, args, name, value if value is None else value.as_integer_ratio()
+        number = self._number.get(key)
         if number is None:
-            number = self._number[gate] = len(self.gates)
-            self.gates.append(gate)
+            number = self._number[key] = len(self.gates)
+            self.gates.append(Gate(op, args, value, name))
         return number
 
     def number(self, value: Fraction | int) -> int:
@@ -61,15 +65,14 @@ class Graph:
                 pass
         return base if exponent == 1 else self.add("power", base, value=exponent)
 
-    def _folded(self, op: str, args: tuple[int, ...]) -> Gate | None:
+    def _folded(self, op: str, args: tuple[int, ...]) -> Fraction | None:
         operands = [q for a in args if self.gates[a].op == "number" and (q := self.gates[a].value) is not None]
         if not args or len(operands) < len(args) or op not in FOLDED:
             return None
         try:
-            value = rational(Node(op), operands)
+            return rational(Node(op), operands)
         except Bad:  # too long to be held exactly, or not defined: left to interval arithmetic
             return None
-        return None if value is None else Gate("number", value=value)
 
     def difference(self, a: int, b: int, depth: int = 0) -> int:
         """a − b, an identity wherever both are defined: common terms cancel, common factors are taken out."""

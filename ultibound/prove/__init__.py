@@ -64,7 +64,7 @@ def _proved(claim: Claim, watch: Watch, gain: str | None) -> Certificate:
     gap = to_float(claim.gap)
     until = time.monotonic() + to_float(claim.seconds)
     sharp = claim.route == "curve" or any(r.kind == "sharp_bound" for r in claim.requirements)
-    known: Known = {}
+    known = Known()
     kept: Attempt | None = None
     while True:
         attempt = best(kind(claim, gap, until, watch, sharp, known=known))

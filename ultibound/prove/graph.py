@@ -63,13 +63,13 @@ class GraphAttempt(Attempt):
         self.writer = CycleWriter(self.proof, self.raw, "")
         self.enclosers: list[Encloser] = []
         self.smaller, self.curve_may_help = None, False
-        self.known = known if known is not None else {}
+        self.known = known if known is not None else Known()
         self.stances: dict[str, StanceSearch] = {}
         for n, s in enumerate(claim.stances, variant * len(claim.stances)):
-            each: Known = {variant: self.known[n]} if n in self.known else {}
+            each = Known({variant: self.known.flows[n]} if n in self.known.flows else {})
             self.stances[s.name] = StanceSearch(claim, s, self.writer, gap, until, watch, self.enclosers, each, variant)
-            if each:
-                self.known[n] = each[variant]
+            if each.flows:
+                self.known.flows[n] = each.flows[variant]
         self.steps = {(s.name, t): self._search((s.name, t)) for s in claim.stances for t in s.then}
         ways: list[Way] = walks(claim) if claim.horizon > 1 else list(self.steps)
         self.walks = {w: self.steps[w[0], w[1]] if len(w) == 2 else self._search(w) for w in ways}

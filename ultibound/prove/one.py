@@ -2,15 +2,15 @@
 
 from __future__ import annotations
 
-from collections.abc import Callable, Sequence
+from collections.abc import Callable, Hashable, Sequence
 from contextlib import suppress
-from dataclasses import replace
+from dataclasses import dataclass, field, replace
 from fractions import Fraction
 from math import floor, inf, prod
 
 from ..bounding.evaluate import to_float
 from ..certificate.certificate import sealed
-from ..certificate.enclosing import Encloser, Proved, Watch
+from ..certificate.enclosing import Encloser, Measured, Proved, Watch
 from ..certificate.explaining import Explained
 from ..certificate.lines import Writer, downward, upward
 from ..certificate.remarks import Remarks, Search
@@ -57,7 +57,12 @@ TRIED = 4  # orbits, the furthest first
 REACH, ENOUGH = 10_000, 200  # steps of the longest path, and of one that is longer than asked for
 
 
-Known = dict[int, tuple[Trial, Flows]]  # by requirement with ranges of its own, or 0
+@dataclass(frozen=True, slots=True)
+class Known:
+    """What earlier passes found, by requirement with ranges of its own, or 0: flows that were proved, and ranges."""
+
+    flows: dict[int, tuple[Trial, Flows]] = field(default_factory=dict)
+    ranges: dict[int, dict[Hashable, Measured]] = field(default_factory=dict)
 
 
 def apart(claim: Claim) -> list[int]:
@@ -81,7 +86,7 @@ class Attempt:
 
     `sharp`: the error curve is followed to the gap, not just roughly. `within`: a radius smaller than the largest.
     `variant`, `derivation`: one requirement over ranges of its own, and what the checker derives for it.
-    `known`: flows of the stance that were proved in an earlier pass. `terse`: only the verdicts count, with nothing
+    `known`: what earlier passes through the same claim found. `terse`: only the verdicts count, with nothing
     said to people and no second argument for what one shows.
     """
 
@@ -103,9 +108,10 @@ class Attempt:
         self.terse = terse
         self.claim, self.gap, self.until, self.watch = claim, gap, until, watch
         self.sharp, self.within = sharp, within
-        self.variant, self.derivation, self.known = variant, derivation, {} if known is None else known
+        self.variant, self.derivation, self.known = variant, derivation, Known() if known is None else known
         self.obligations, self.writer = Obligations(claim), self.writes(claim, derivation)
-        self.ranges = Encloser(claim, self.obligations.graph, self.writer, gap, until, watch)
+        ranges = self.known.ranges.setdefault(variant, {})
+        self.ranges = Encloser(claim, self.obligations.graph, self.writer, gap, until, watch, ranges)
         self.near_region = False
         self.smaller: Fraction | None = None
         self.reach = inf  # radius of a ball from which the steps within a horizon stay in the region (an estimate)
@@ -252,11 +258,11 @@ class Attempt:
             self.watch("the flow of the stance", done, float(total))
 
         try:
-            if self.variant not in self.known:
+            if self.variant not in self.known.flows:
                 spans = {p.name: self._span(p.gate, p.grid) for p in m.parameters}
                 found = trial(self.obligations.graph, m, self.claim.libraries, spans, ACCURACY, watch=watch)
-                self.known[self.variant] = found, self.writer.flows_of(found.witness)
-            found, flows = self.known[self.variant]
+                self.known.flows[self.variant] = found, self.writer.flows_of(found.witness)
+            found, flows = self.known.flows[self.variant]
             self.ranges.flows = found.table
             self.writer.trajectory(found.witness, flows)
         except (Rejected, Undefined, Unsolved) as why:
