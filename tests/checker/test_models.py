@@ -137,6 +137,29 @@ def test_products_of_chebyshev_polynomials() -> None:
         gather(out, {(0, 0): [1] * 2001}, {(0, 0): [1] * 2000}, 1)
 
 
+@pytest.mark.parametrize("coordinates", [1, 2, 3, 5])
+@pytest.mark.parametrize("sign", [1, -1])
+def test_products_without_time(coordinates: int, sign: int) -> None:
+    """Of more and of fewer terms than are multiplied one by one, into what is there already; powers reach 60 and more."""
+    rng = random.Random(coordinates)
+
+    def some(many: int) -> dict[tuple[int, ...], list[int]]:
+        powers = [tuple(rng.choice([0, 1, 2, 3, 31, 32, 60]) for _ in range(coordinates)) for _ in range(many)]
+        return {e: [rng.choice([0, -1, 1]) * rng.getrandbits(90)] for e in powers}
+
+    for many in (1, 5, 40, 90):
+        x, y = some(many), some(many)
+        there = [tuple(map(sum, zip(e, f, strict=True))) for e in list(x)[:3] for f in list(y)[:2]]
+        out = {to: [rng.getrandbits(90), 5, -7][:k] for k, to in enumerate(there)}
+        wanted = {to: list(column) for to, column in out.items()}
+        for e, (p,) in x.items():
+            for f, (q,) in y.items():
+                column = wanted.setdefault(tuple(map(sum, zip(e, f, strict=True))), [0])
+                column[:1] = [(column[0] if column else 0) + 2 * sign * p * q]
+        gather(out, x, y, sign)
+        assert out == wanted
+
+
 def test_derivative_by_time() -> None:
     assert derivative([]) == [] and derivative([7]) == []
     assert derivative([0, 1]) == [1] and derivative([0, 0, 1]) == [0, 4]

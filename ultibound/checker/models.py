@@ -7,6 +7,7 @@ and of its derivatives by the coordinates, in the sequence of `Models.orders`.
 
 from __future__ import annotations
 
+from collections import defaultdict
 from collections.abc import Iterable
 from fractions import Fraction
 from heapq import heappop, heappush
@@ -21,6 +22,7 @@ Poly = dict[Exponents, list[int]]
 Jet = list[int]
 MOST_TERMS = 40  # of a Taylor polynomial
 MOST_PRODUCTS = 4_000_000  # of coefficients, in one product of polynomials
+FEW_PRODUCTS = 100  # below which to join powers takes longer than to add them one by one
 MOST_BOXES = 1000  # into which the range of a divisor is divided
 HIGHEST = 60  # power of a model
 CIRCULAR = frozenset(["exp", "sin", "cos", "sinh", "cosh"])  # the fourth derivative is the function itself
@@ -294,6 +296,12 @@ def gather(out: Poly, x: Poly, y: Poly, sign: int) -> None:
     """Adds (or, sign -1, subtracts) twice a product: 2 T_i T_j = T_{i+j} + T_{|i-j|}."""
     if sum(map(len, x.values())) * sum(map(len, y.values())) > MOST_PRODUCTS:
         raise Undefined("a product of polynomials that long")
+    if len(x) * len(y) > FEW_PRODUCTS and all(len(c) == 1 for each in (x, y) for c in each.values()):
+        for to, total in _flat(x, y).items():
+            column = out.setdefault(to, [])
+            column += [0] * (1 - len(column))
+            column[0] += 2 * sign * total
+        return
     for e, first in x.items():
         for f, second in y.items():
             to = tuple(map(add, e, f))
@@ -307,6 +315,23 @@ def gather(out: Poly, x: Poly, y: Poly, sign: int) -> None:
                         column[i + j] += r
                         column[i - j if i > j else j - i] += r
             out[to] = column
+
+
+def _flat(x: Poly, y: Poly) -> dict[Exponents, int]:
+    """The product of polynomials without time; powers are added as digits of one number, which none exceeds."""
+    width = (max(map(max, x)) + max(map(max, y))).bit_length()
+
+    def joined(e: Exponents) -> int:
+        return sum([n << width * k for k, n in enumerate(e)])
+
+    totals = defaultdict[int, int](int)
+    second = [(joined(f), q) for f, (q,) in y.items()]
+    for e, (p,) in x.items():
+        first = joined(e)
+        for f, q in second:
+            totals[first + f] += p * q
+    places, mask = range(0, width * len(next(iter(x))), width), (1 << width) - 1
+    return {tuple([to >> k & mask for k in places]): total for to, total in totals.items()}
 
 
 def steepest(degrees: list[int], by: tuple[int, ...]) -> int:
