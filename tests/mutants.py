@@ -279,6 +279,7 @@ EQUIVALENT: dict[Key, str] = {
     ("models", "Models.least", "bound <= 0", "bound < 0"):
         "a bound of 0 is below a quarter of the middle, unless both are 0: then the polynomial is, and is refused either way",
     ("models", "gather", "i > j", "i >= j"): "at i == j both are 0",
+    ("models", "gather", "len(x) * len(y) > FEW_PRODUCTS", "len(x) * len(y) >= FEW_PRODUCTS"): "both ways give the same product",
     ("models", "steepest", "degrees[0] ** 2 * (degrees[0] ** 2 - 1) // 3", "-(-(degrees[0] ** 2 * (degrees[0] ** 2 - 1)) // 3)"):
         "n n (n n - 1) is a multiple of 3",
     ("rates", "Coefficients.reading", "len(corners) // 2", "-(-len(corners) // 2)"): "a cell has an even number of corners",
