@@ -12,6 +12,8 @@ from collections.abc import Callable, Sequence
 from fractions import Fraction as Q
 from typing import Any
 
+import pytest
+
 from tests.checker.questions import all_hold
 from tests.checker.test_boundaries import STEP, Draft, Questions, but, derivation, limited, refuses
 from tests.stances import stance
@@ -138,18 +140,18 @@ def products_of_polynomials(checker: Any) -> None:
         gather({}, {(): long}, {(): [*long, 0]}, 1)
     # (1 + a)**10 times itself is (1 + a)**20, beside (b + b**3)**2 of another coordinate and what is there already
     for few in (-1, 10**9):  # joined to one number, or one by one
-        checker.models.FEW_PRODUCTS, before = few, checker.models.FEW_PRODUCTS
-        half = {(k, n): [math.comb(10, k)] for k in range(11) for n in (1, 3)}
-        out = {(3, 4): [7, 8, 9], (5, 4): [], (99, 0): [1]}
-        gather(out, half, half, -1)
-        found = {(k, n): [-2 * math.comb(20, k) * (1 + (n == 4))] for k in range(21) for n in (2, 4, 6)}
-        assert out == {**found, (3, 4): [7 + found[3, 4][0], 8, 9], (99, 0): [1]}
-        out = {}  # with a time that one of them has
-        gather(out, {(0, 1): [2], (3, 0): [0, 5]}, {(1, 0): [3], (0, 2): [7]}, 1)
-        assert out == {(1, 1): [12], (0, 3): [28], (4, 0): [0, 30], (3, 2): [0, 70]}
-        gather(out, {(0, 1): [0, 2]}, {(1, 0): [0, 3]}, 1)  # that both have
-        assert out[1, 1] == [12 + 6, 0, 6]
-        checker.models.FEW_PRODUCTS = before
+        with pytest.MonkeyPatch.context() as patch:
+            patch.setattr(checker.models, "FEW_PRODUCTS", few)
+            half = {(k, n): [math.comb(10, k)] for k in range(11) for n in (1, 3)}
+            out = {(3, 4): [7, 8, 9], (5, 4): [], (99, 0): [1]}
+            gather(out, half, half, -1)
+            found = {(k, n): [-2 * math.comb(20, k) * (1 + (n == 4))] for k in range(21) for n in (2, 4, 6)}
+            assert out == {**found, (3, 4): [7 + found[3, 4][0], 8, 9], (99, 0): [1]}
+            out = {}  # with a time that one of them has
+            gather(out, {(0, 1): [2], (3, 0): [0, 5]}, {(1, 0): [3], (0, 2): [7]}, 1)
+            assert out == {(1, 1): [12], (0, 3): [28], (4, 0): [0, 30], (3, 2): [0, 70]}
+            gather(out, {(0, 1): [0, 2]}, {(1, 0): [0, 3]}, 1)  # that both have
+            assert out[1, 1] == [12 + 6, 0, 6]
     derivative, value = checker.models.derivative, checker.models.value
     assert derivative([]) == derivative([7]) == [] and derivative([0, 1]) == [1] and derivative([9, 0, 1]) == [0, 4]
     assert derivative([0, 2, 3, 5, 7]) == [17, 68, 30, 56]  # T_3' = 3 + 6 T_2, T_4' = 8 T_1 + 8 T_3
